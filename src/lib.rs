@@ -1,0 +1,2 @@
+//! Turnwright: find, mend, reshape and prove the turns of an animation clip.
+pub mod rotor;

@@ -1,0 +1,18 @@
+//! Rotations as rotors: products, exp and log, slerp and squad, swing and twist, Euler angles.
+//!
+//! Knows nothing of skeletons, files or screens. Angles are radians. The conventions and their map to quaternions
+//! are on [`Rotor`].
+
+mod bivector;
+mod euler;
+mod interpolate;
+mod matrix;
+#[expect(clippy::module_inception, reason = "the noun of the file is the noun of the layer")]
+mod rotor;
+mod swing_twist;
+
+pub use bivector::Bivector;
+pub use euler::{Axis, EulerOrder, NoEulerOrder};
+pub use interpolate::{slerp, squad, squad_inner, squad_inner_uneven, slerp_as_signed};
+pub use rotor::Rotor;
+pub use swing_twist::SwingTwist;
