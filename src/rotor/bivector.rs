@@ -57,7 +57,11 @@ impl Bivector {
     #[must_use]
     pub fn normalize_or_zero(self) -> Self {
         let length = self.length();
-        if length > 0.0 { Self::new(self.yz / length, self.zx / length, self.xy / length) } else { Self::ZERO }
+        if length > 0.0 {
+            Self::new(self.yz / length, self.zx / length, self.xy / length)
+        } else {
+            Self::ZERO
+        }
     }
 
     /// Whether all parts are finite.

@@ -47,7 +47,9 @@ impl Rotor {
                 let half_turn = Self::product_of_vectors(side, u);
                 // What is left after the half turn is small, and so well defined.
                 let turned = half_turn.apply(u);
-                let rest = (turned + v).try_normalize().map_or(Self::IDENTITY, |h| Self::product_of_vectors(h, turned));
+                let rest = (turned + v)
+                    .try_normalize()
+                    .map_or(Self::IDENTITY, |h| Self::product_of_vectors(h, turned));
                 (rest * half_turn).normalize()
             }
         }

@@ -13,6 +13,6 @@ mod swing_twist;
 
 pub use bivector::Bivector;
 pub use euler::{Axis, EulerOrder, NoEulerOrder};
-pub use interpolate::{slerp, squad, squad_inner, squad_inner_uneven, slerp_as_signed};
+pub use interpolate::{slerp, slerp_as_signed, squad, squad_inner, squad_inner_uneven};
 pub use rotor::Rotor;
 pub use swing_twist::SwingTwist;
