@@ -1,0 +1,317 @@
+//! The turns of one joint over time.
+
+use std::sync::Arc;
+
+use crate::rotor::{Axis, Bivector, EulerOrder, Rotor, slerp, squad, squad_inner_uneven};
+
+use super::times::{Place, Times};
+
+/// Which orientations a segment passes through on its way from one key to the next.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum PathKind {
+    /// The first key is held until the second.
+    Hold,
+    /// The short arc at constant rate.
+    Slerp,
+    /// Smooth through the keys, with no jump in rate (Shoemake 1987, in its form for uneven times).
+    Squad,
+    /// glTF CUBICSPLINE: the four numbers follow a Hermite cubic with the file's tangents, then are made unit.
+    Cubic,
+}
+
+/// The path kinds of a track: segment `i` runs from key `i` to key `i + 1`.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Paths {
+    /// The same in every segment.
+    Every(PathKind),
+    /// One for each segment.
+    Each(Arc<[PathKind]>),
+}
+
+impl Paths {
+    /// The kind of a segment; the last kind listed serves for what lies beyond.
+    pub fn of(&self, segment: usize) -> PathKind {
+        match self {
+            Self::Every(kind) => *kind,
+            Self::Each(kinds) => kinds.get(segment).or(kinds.last()).copied().unwrap_or(PathKind::Slerp),
+        }
+    }
+}
+
+/// The angles a file stores for a joint in place of a rotor.
+#[derive(Clone, Debug, PartialEq)]
+pub struct FileAngles {
+    /// The axes in the order the file lists them; one, two or three.
+    pub axes: Vec<Axis>,
+    /// The order they belong to, filled up where the file has fewer than three.
+    pub order: EulerOrder,
+    /// Degrees as the file has them, a triple for each key in the axes' order; what the file lacks is 0.
+    pub degrees: Arc<[[f64; 3]]>,
+}
+
+impl FileAngles {
+    /// The rotor of a triple in degrees.
+    pub fn rotor(&self, degrees: [f64; 3]) -> Rotor {
+        self.order.to_rotor(degrees.map(f64::to_radians))
+    }
+}
+
+/// How the file itself holds the turns of a track, beside the rotors made of it.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Stored {
+    /// The four numbers of each key; their signs and lengths are the file's own.
+    Rotors,
+    /// Euler angles (BVH, and CSV of that kind).
+    Angles(FileAngles),
+    /// Plane angles in degrees, yz, zx, xy (CSV of that kind).
+    PlaneAngles(Arc<[[f64; 3]]>),
+}
+
+/// Keys of one joint's turn relative to its parent.
+///
+/// The rotors are as stored: they may be off unit length, of changing sign, or not finite; [`RotationTrack::at`] copes.
+#[derive(Clone, Debug, PartialEq)]
+pub struct RotationTrack {
+    /// Key times in seconds.
+    pub times: Times,
+    /// A rotor for each key, as stored.
+    pub keys: Arc<[Rotor]>,
+    /// Path kinds of the segments.
+    pub paths: Paths,
+    /// In- and out-tangent of each key, per second, of the four numbers; for [`PathKind::Cubic`] alone.
+    pub tangents: Option<Arc<[[Rotor; 2]]>>,
+    /// The file's own form.
+    pub stored: Stored,
+}
+
+impl RotationTrack {
+    /// A track of rotors with slerp between.
+    pub fn from_rotors(times: Times, keys: impl Into<Arc<[Rotor]>>) -> Self {
+        Self {
+            times,
+            keys: keys.into(),
+            paths: Paths::Every(PathKind::Slerp),
+            tangents: None,
+            stored: Stored::Rotors,
+        }
+    }
+
+    /// A track of a file's angles, a triple in degrees for each key, with slerp between.
+    /// Angles that are not finite give rotors that are not.
+    pub fn from_angles(times: Times, angles: FileAngles) -> Self {
+        let keys: Arc<[Rotor]> = angles.degrees.iter().map(|&degrees| angles.rotor(degrees)).collect();
+        Self {
+            times,
+            keys: aligned(&keys),
+            paths: Paths::Every(PathKind::Slerp),
+            tangents: None,
+            stored: Stored::Angles(angles),
+        }
+    }
+
+    /// A track of plane angles in degrees, a triple yz, zx, xy for each key, with slerp between.
+    pub fn from_plane_angles(times: Times, degrees: Arc<[[f64; 3]]>) -> Self {
+        let keys: Arc<[Rotor]> =
+            degrees.iter().map(|&d| Rotor::from_plane_angles(Bivector::from_degrees(d))).collect();
+        Self {
+            times,
+            keys: aligned(&keys),
+            paths: Paths::Every(PathKind::Slerp),
+            tangents: None,
+            stored: Stored::PlaneAngles(degrees),
+        }
+    }
+
+    /// The file's angles, where it stores such.
+    pub fn file_angles(&self) -> Option<&FileAngles> {
+        match &self.stored {
+            Stored::Angles(angles) => Some(angles),
+            Stored::Rotors | Stored::PlaneAngles(_) => None,
+        }
+    }
+
+    /// The orientation at `time_secs` as the file's own format plays it; unit. Before the first key and after the last
+    /// that key is held. A key that is not finite is stepped over: its sound neighbour is held. No turn without keys.
+    pub fn at(&self, time_secs: f64) -> Rotor {
+        self.at_by(time_secs, None)
+    }
+
+    /// As [`RotationTrack::at`], with `path` in place of the track's own path kinds where it is given.
+    pub fn at_by(&self, time_secs: f64, path: Option<PathKind>) -> Rotor {
+        match self.times.place(time_secs) {
+            None => Rotor::IDENTITY,
+            Some(Place::At(key)) => self.sound_key(key),
+            Some(Place::Between(key, share)) => {
+                self.between(key, share, path.unwrap_or_else(|| self.paths.of(key)))
+            }
+        }
+    }
+
+    /// The unit rotor of a key; where it is not finite or zero, of the nearest sound key before it, else after it.
+    pub fn sound_key(&self, key: usize) -> Rotor {
+        let unit = |rotor: &Rotor| rotor.try_normalize();
+        let before = || self.keys[..key].iter().rev().find_map(unit);
+        let after = || self.keys[key..].iter().find_map(unit);
+        unit(&self.keys[key]).or_else(before).or_else(after).unwrap_or(Rotor::IDENTITY)
+    }
+
+    fn between(&self, key: usize, share: f64, path: PathKind) -> Rotor {
+        let (a, b) = (self.sound_key(key), self.sound_key(key + 1));
+        match path {
+            PathKind::Hold => a,
+            PathKind::Slerp => slerp(a, b, share).normalize(),
+            PathKind::Squad => self.squad(key, share),
+            PathKind::Cubic => match &self.tangents {
+                Some(tangents) => self.cubic(tangents, key, share).try_normalize().unwrap_or(a),
+                None => slerp(a, b, share).normalize(),
+            },
+        }
+    }
+
+    /// glTF 2.0, appendix C.5: no sign is changed, and the result is not yet unit.
+    fn cubic(&self, tangents: &[[Rotor; 2]], key: usize, t: f64) -> Rotor {
+        let secs = self.times.at(key + 1) - self.times.at(key);
+        let (t2, t3) = (t * t, t * t * t);
+        let weighted = [
+            (self.keys[key], 2.0 * t3 - 3.0 * t2 + 1.0),
+            (tangents[key][1], secs * (t3 - 2.0 * t2 + t)),
+            (self.keys[key + 1], 3.0 * t2 - 2.0 * t3),
+            (tangents[key + 1][0], secs * (t3 - t2)),
+        ];
+        weighted.into_iter().fold(Rotor::new(0.0, 0.0, 0.0, 0.0), |sum, (rotor, weight)| {
+            Rotor::new(
+                sum.s + rotor.s * weight,
+                sum.yz + rotor.yz * weight,
+                sum.zx + rotor.zx * weight,
+                sum.xy + rotor.xy * weight,
+            )
+        })
+    }
+
+    /// Squad between two keys with inner points from their four neighbours; at the ends the key is its own inner point.
+    fn squad(&self, key: usize, share: f64) -> Rotor {
+        let last = self.keys.len() - 1;
+        let a = self.sound_key(key);
+        let b = self.sound_key(key + 1).aligned_to(a);
+        let secs = |from: usize| self.times.at(from + 1) - self.times.at(from);
+        let inner_a = if key == 0 {
+            a
+        } else {
+            let before = self.sound_key(key - 1).aligned_to(a);
+            inner_points(before, a, b, secs(key - 1), secs(key))[1]
+        };
+        let inner_b = if key + 1 == last {
+            b
+        } else {
+            let after = self.sound_key(key + 2).aligned_to(b);
+            inner_points(a, b, after, secs(key), secs(key + 1))[0]
+        };
+        squad(a, inner_a, inner_b, b, share).normalize()
+    }
+
+    /// This track with other rotors at some keys, `(key, rotor)`. All other keys keep their numbers. The file's own
+    /// form follows: of the equal triples the one nearest to the key before is taken.
+    ///
+    /// # Panics
+    /// When a key does not exist.
+    #[must_use]
+    pub fn with_keys(&self, changes: &[(usize, Rotor)]) -> Self {
+        let mut keys = self.keys.to_vec();
+        for &(key, rotor) in changes {
+            keys[key] = rotor;
+        }
+        let stored = match &self.stored {
+            Stored::Rotors => Stored::Rotors,
+            Stored::Angles(angles) => {
+                let mut degrees = angles.degrees.to_vec();
+                for &(key, rotor) in changes {
+                    let sound = |triple: &&[f64; 3]| triple.iter().all(|angle| angle.is_finite());
+                    let reference =
+                        degrees[..key].iter().rev().find(sound).or_else(|| degrees[key..].iter().find(sound));
+                    let reference = reference.copied().unwrap_or_default().map(f64::to_radians);
+                    let triple = angles.order.from_rotor(rotor.normalize(), reference[2]);
+                    degrees[key] = angles.order.nearest_equal(triple, reference).map(f64::to_degrees);
+                }
+                Stored::Angles(FileAngles { degrees: degrees.into(), ..angles.clone() })
+            }
+            Stored::PlaneAngles(degrees) => {
+                let mut degrees = degrees.to_vec();
+                for &(key, rotor) in changes {
+                    degrees[key] = rotor.plane_angles().to_degrees();
+                }
+                Stored::PlaneAngles(degrees.into())
+            }
+        };
+        Self { keys: keys.into(), stored, ..self.clone() }
+    }
+
+    /// This track with other file angles in degrees at some keys, `(key, triple)`, and the rotors that follow from them.
+    /// A track without file angles stays as it is.
+    ///
+    /// # Panics
+    /// When a key does not exist.
+    #[must_use]
+    pub fn with_angles(&self, changes: &[(usize, [f64; 3])]) -> Self {
+        let Stored::Angles(angles) = &self.stored else { return self.clone() };
+        let mut degrees = angles.degrees.to_vec();
+        let mut keys = self.keys.to_vec();
+        for &(key, triple) in changes {
+            degrees[key] = triple;
+            keys[key] = angles.rotor(triple).aligned_to(keys[key]);
+        }
+        let stored = Stored::Angles(FileAngles { degrees: degrees.into(), ..angles.clone() });
+        Self { keys: keys.into(), stored, ..self.clone() }
+    }
+
+    /// Keys whose numbers differ from `other`'s in any bit, in the file's own form. Every key when their counts differ.
+    pub fn changed_keys(&self, other: &Self) -> Vec<usize> {
+        if self.keys.len() != other.keys.len() {
+            return (0..self.keys.len()).collect();
+        }
+        let same_triple = |a: &[f64; 3], b: &[f64; 3]| (0..3).all(|i| a[i].to_bits() == b[i].to_bits());
+        let differs = |key: &usize| match (&self.stored, &other.stored) {
+            (Stored::Angles(own), Stored::Angles(others)) => {
+                !same_triple(&own.degrees[*key], &others.degrees[*key])
+            }
+            (Stored::PlaneAngles(own), Stored::PlaneAngles(others)) => {
+                !same_triple(&own[*key], &others[*key])
+            }
+            _ => {
+                bits(self.keys[*key]) != bits(other.keys[*key])
+                    || self.tangent_bits(*key) != other.tangent_bits(*key)
+            }
+        };
+        (0..self.keys.len()).filter(differs).collect()
+    }
+
+    fn tangent_bits(&self, key: usize) -> Option<[[u64; 4]; 2]> {
+        self.tangents.as_ref().map(|tangents| tangents[key].map(bits))
+    }
+}
+
+fn bits(rotor: Rotor) -> [u64; 4] {
+    [rotor.s.to_bits(), rotor.yz.to_bits(), rotor.zx.to_bits(), rotor.xy.to_bits()]
+}
+
+/// Rotors made of angles have no sign of their own: each takes the one near the last finite one before it.
+fn aligned(keys: &[Rotor]) -> Arc<[Rotor]> {
+    let mut reference = Rotor::IDENTITY;
+    keys.iter()
+        .map(|key| {
+            let own = key.aligned_to(reference);
+            if own.is_finite() {
+                reference = own;
+            }
+            own
+        })
+        .collect()
+}
+
+/// Inner points of squad with the three-point (parabola) rate at the key.
+fn inner_points(before: Rotor, key: Rotor, after: Rotor, before_secs: f64, after_secs: f64) -> [Rotor; 2] {
+    let from_before = (before.reverse() * key).plane_angles_as_signed();
+    let to_after = (key.reverse() * after).plane_angles_as_signed();
+    let rate = (to_after * (before_secs / after_secs) + from_before * (after_secs / before_secs))
+        * (1.0 / (before_secs + after_secs));
+    squad_inner_uneven(before, key, after, before_secs, after_secs, rate)
+}

@@ -1,0 +1,122 @@
+//! The kinds of rotation fault.
+
+use std::fmt;
+use std::str::FromStr;
+
+/// One kind of rotation fault, in the order in which faults are mended: each later kind is judged on turns that the
+/// earlier kinds no longer disturb.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub enum SnagKind {
+    /// Not finite, or not unit within 1e-3.
+    BrokenValue,
+    /// Neighbouring stored rotors of opposite sign.
+    SignFlip,
+    /// A file angle steps by about 360° while the orientation hardly moves.
+    Wrap,
+    /// A file's angle triple jumps to its mirrored equal.
+    MirroredAngles,
+    /// Played as stored, a segment turns more than 180° though a short way exists.
+    LongWay,
+    /// For a run of frames a joint sits about 180° off its neighbours.
+    HalfTurn,
+    /// One to a few frames lie far off the motion around them.
+    Spike,
+}
+
+impl SnagKind {
+    /// All kinds, in mending order.
+    pub const ALL: [Self; 7] = [
+        Self::BrokenValue,
+        Self::SignFlip,
+        Self::Wrap,
+        Self::MirroredAngles,
+        Self::LongWay,
+        Self::HalfTurn,
+        Self::Spike,
+    ];
+
+    /// The name in files, on the command line and on screen.
+    pub const fn name(self) -> &'static str {
+        match self {
+            Self::BrokenValue => "broken-value",
+            Self::SignFlip => "sign-flip",
+            Self::Wrap => "wrap",
+            Self::MirroredAngles => "mirrored-angles",
+            Self::LongWay => "long-way",
+            Self::HalfTurn => "half-turn",
+            Self::Spike => "spike",
+        }
+    }
+
+    /// The letter that marks it on the turn map and in lists, beside its colour.
+    pub const fn letter(self) -> char {
+        match self {
+            Self::BrokenValue => 'B',
+            Self::SignFlip => 'F',
+            Self::Wrap => 'W',
+            Self::MirroredAngles => 'M',
+            Self::LongWay => 'L',
+            Self::HalfTurn => 'H',
+            Self::Spike => 'S',
+        }
+    }
+
+    /// What is wrong, in one sentence for people.
+    pub const fn explanation(self) -> &'static str {
+        match self {
+            Self::BrokenValue => "A stored value is no rotation: not a number, infinite, or off unit length.",
+            Self::SignFlip => {
+                "Neighbouring keys store the same turn with opposite signs; players that work on the four numbers turn the long way."
+            }
+            Self::Wrap => "A stored angle steps by a whole turn while the joint hardly moves.",
+            Self::MirroredAngles => {
+                "The three stored angles jump to another triple that means the same pose."
+            }
+            Self::LongWay => "Played as stored, the joint takes the long way round between two keys.",
+            Self::HalfTurn => "For a run of frames the joint sits about half a turn off its neighbours.",
+            Self::Spike => "One or a few frames lie far off the motion around them.",
+        }
+    }
+
+    /// What its mend does, in one sentence for people.
+    pub const fn mend_explanation(self) -> &'static str {
+        match self {
+            Self::BrokenValue => "Brings the value to unit length, or bridges the gap from sound neighbours.",
+            Self::SignFlip => "Chooses the sign of the keys before it; no pose changes.",
+            Self::Wrap => "Takes the whole turn out of the angle; no pose changes at any frame.",
+            Self::MirroredAngles => {
+                "Writes the equal triple nearest the frames before it; no pose changes at any frame."
+            }
+            Self::LongWay => "Takes the short way between the two keys.",
+            Self::HalfTurn => "Takes the half turn out of the run and blends its seams.",
+            Self::Spike => "Draws the frames anew from the sound motion on both sides.",
+        }
+    }
+}
+
+impl fmt::Display for SnagKind {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.write_str(self.name())
+    }
+}
+
+/// A text that names no snag kind.
+#[derive(Debug, thiserror::Error, PartialEq, Eq)]
+#[error("expected a snag kind ({known}), found `{found}`", known = known())]
+pub struct NoSuchKind {
+    /// The text.
+    pub found: String,
+}
+
+fn known() -> String {
+    SnagKind::ALL.map(SnagKind::name).join(", ")
+}
+
+impl FromStr for SnagKind {
+    type Err = NoSuchKind;
+
+    fn from_str(text: &str) -> Result<Self, NoSuchKind> {
+        let named = |kind: &Self| kind.name() == text;
+        Self::ALL.into_iter().find(named).ok_or_else(|| NoSuchKind { found: text.to_owned() })
+    }
+}
