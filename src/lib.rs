@@ -7,6 +7,7 @@
 //! only: in `exchange` and wherever a person reads or types a number.
 
 pub mod clip;
+pub mod exchange;
 pub mod mend;
 pub mod rotor;
 pub mod skeleton;

@@ -1,0 +1,8 @@
+//! Reading and writing: BVH, glTF 2.0, CSV and our own RON scenes.
+//!
+//! Each format has a folder that turns bytes into clips and clips into bytes; [`disk`] alone touches files.
+
+pub mod disk;
+mod note;
+
+pub use note::Note;
