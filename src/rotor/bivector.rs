@@ -1,6 +1,6 @@
 //! The bivector: an oriented piece of plane, and so also the three plane angles of a turn.
 
-use std::ops::{Add, Mul, Neg, Sub};
+use std::ops::{Add, Div, Mul, Neg, Sub};
 
 use glam::DVec3;
 
@@ -24,31 +24,37 @@ impl Bivector {
     pub const ZERO: Self = Self::new(0.0, 0.0, 0.0);
 
     /// From its parts in the planes yz, zx and xy.
+    #[must_use]
     pub const fn new(yz: f64, zx: f64, xy: f64) -> Self {
         Self { yz, zx, xy }
     }
 
     /// The plane square to `axis`, turned right-handed about it: the same three numbers.
+    #[must_use]
     pub const fn from_axis(axis: DVec3) -> Self {
         Self::new(axis.x, axis.y, axis.z)
     }
 
     /// The vector square to this plane, of the same length: the same three numbers.
+    #[must_use]
     pub const fn axis(self) -> DVec3 {
         DVec3::new(self.yz, self.zx, self.xy)
     }
 
     /// The outer product `u ∧ v`: the plane that runs from `u` to `v`, with the area between them.
+    #[must_use]
     pub fn outer(u: DVec3, v: DVec3) -> Self {
         Self::from_axis(u.cross(v))
     }
 
     /// Sum of products of parts. The geometric product of a bivector with itself is `-b.dot(b)`.
+    #[must_use]
     pub fn dot(self, other: Self) -> f64 {
         self.yz * other.yz + self.zx * other.zx + self.xy * other.xy
     }
 
     /// Area, or as plane angles the whole turn in radians. Neither overflows nor underflows.
+    #[must_use]
     pub fn length(self) -> f64 {
         self.yz.hypot(self.zx).hypot(self.xy)
     }
@@ -65,16 +71,19 @@ impl Bivector {
     }
 
     /// Whether all parts are finite.
+    #[must_use]
     pub fn is_finite(self) -> bool {
         self.yz.is_finite() && self.zx.is_finite() && self.xy.is_finite()
     }
 
     /// The parts in degrees, for people.
+    #[must_use]
     pub fn to_degrees(self) -> [f64; 3] {
         [self.yz.to_degrees(), self.zx.to_degrees(), self.xy.to_degrees()]
     }
 
     /// From parts in degrees, in the order yz, zx, xy.
+    #[must_use]
     pub fn from_degrees([yz, zx, xy]: [f64; 3]) -> Self {
         Self::new(yz.to_radians(), zx.to_radians(), xy.to_radians())
     }
@@ -105,5 +114,12 @@ impl Mul<f64> for Bivector {
     type Output = Self;
     fn mul(self, factor: f64) -> Self {
         Self::new(self.yz * factor, self.zx * factor, self.xy * factor)
+    }
+}
+
+impl Div<f64> for Bivector {
+    type Output = Self;
+    fn div(self, divisor: f64) -> Self {
+        Self::new(self.yz / divisor, self.zx / divisor, self.xy / divisor)
     }
 }

@@ -7,12 +7,16 @@ mod bivector;
 mod euler;
 mod interpolate;
 mod matrix;
+mod mean;
 #[expect(clippy::module_inception, reason = "the noun of the file is the noun of the layer")]
 mod rotor;
 mod swing_twist;
 
 pub use bivector::Bivector;
 pub use euler::{Axis, EulerOrder, NoEulerOrder};
-pub use interpolate::{slerp, slerp_as_signed, squad, squad_inner, squad_inner_uneven};
+pub use interpolate::{
+    mean_rate, nlerp, parabola_rate, slerp, slerp_as_signed, squad, squad_inner, squad_inner_uneven,
+};
+pub use mean::{Mean, chordal_mean, geodesic_mean};
 pub use rotor::Rotor;
 pub use swing_twist::SwingTwist;

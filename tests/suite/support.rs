@@ -35,38 +35,38 @@ pub(crate) fn shared_json(path: &str) -> Option<Value> {
 /// How far two values are apart, in the unit that suits them.
 pub(crate) trait Distance {
     /// 0 for equal; NaN, and so never close, when either is NaN.
-    fn distance(&self, other: &Self) -> f64;
+    fn distance_to(&self, other: &Self) -> f64;
 }
 
 impl Distance for f64 {
-    fn distance(&self, other: &Self) -> f64 {
+    fn distance_to(&self, other: &Self) -> f64 {
         (self - other).abs()
     }
 }
 
 impl Distance for DVec3 {
-    fn distance(&self, other: &Self) -> f64 {
+    fn distance_to(&self, other: &Self) -> f64 {
         let d = *self - *other;
         d.x.hypot(d.y).hypot(d.z)
     }
 }
 
 impl Distance for Bivector {
-    fn distance(&self, other: &Self) -> f64 {
+    fn distance_to(&self, other: &Self) -> f64 {
         (*self - *other).length()
     }
 }
 
 impl<const N: usize> Distance for [f64; N] {
     /// The largest difference of two entries.
-    fn distance(&self, other: &Self) -> f64 {
+    fn distance_to(&self, other: &Self) -> f64 {
         largest(self.iter().zip(other).map(|(a, b)| (a - b).abs()))
     }
 }
 
 impl Distance for DMat3 {
     /// The largest difference of two entries.
-    fn distance(&self, other: &Self) -> f64 {
+    fn distance_to(&self, other: &Self) -> f64 {
         largest(self.to_cols_array().iter().zip(other.to_cols_array()).map(|(a, b)| (a - b).abs()))
     }
 }
@@ -74,7 +74,7 @@ impl Distance for DMat3 {
 impl Distance for Rotor {
     /// The turn between two rotations in radians; `R` and `−R` are one rotation. Unlike an arc cosine it is accurate
     /// near 0, and unlike the code under test it needs no product: `4 atan2(|p − q|, |p + q|)`.
-    fn distance(&self, other: &Self) -> f64 {
+    fn distance_to(&self, other: &Self) -> f64 {
         let (p, q) = (self.to_xyzw(), other.to_xyzw());
         let length = |sign: f64| (0..4).fold(0.0_f64, |sum, i| sum.hypot(p[i] + sign * q[i]));
         let (difference, sum) = (length(-1.0), length(1.0));
@@ -84,7 +84,7 @@ impl Distance for Rotor {
 }
 
 /// The largest of all, or NaN if there is one.
-fn largest(values: impl Iterator<Item = f64>) -> f64 {
+pub(crate) fn largest(values: impl Iterator<Item = f64>) -> f64 {
     values.fold(0.0, |largest, value| if value > largest || value.is_nan() { value } else { largest })
 }
 
@@ -96,7 +96,7 @@ macro_rules! assert_close {
     };
     ($found:expr, $expected:expr, $tolerance:expr, $($message:tt)+) => {{
         let (found, expected, tolerance): (_, _, f64) = ($found, $expected, $tolerance);
-        let distance = $crate::support::Distance::distance(&found, &expected);
+        let distance = $crate::support::Distance::distance_to(&found, &expected);
         assert!(
             distance <= tolerance,
             "{}\n   found {found:?}\nexpected {expected:?}\n   apart {distance:e}, allowed {tolerance:e}",
