@@ -10,5 +10,6 @@ pub mod clip;
 pub mod exchange;
 pub mod mend;
 pub mod rotor;
+
 pub mod skeleton;
 pub mod snag;

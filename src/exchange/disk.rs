@@ -1,7 +1,5 @@
 //! The only place that touches files: bounded reads, atomic writes.
 
-#![expect(clippy::disallowed_methods, reason = "this is the module the others are sent to")]
-
 use std::fs::File;
 use std::io::{self, Read, Write};
 use std::path::{Path, PathBuf};

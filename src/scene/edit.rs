@@ -1,0 +1,196 @@
+//! Edits: the only door to a changed document. Plain data, applied purely.
+
+use crate::snag::Snag;
+
+use super::document::{ClipWork, Document, SourceRef};
+use super::pass::{PassId, PassStep, SnagMark};
+
+/// One change of a document. `work` is the index of a clip's work.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Edit {
+    /// Mend these snags.
+    Mend {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        snags: Vec<Snag>,
+    },
+    /// Mend these no longer.
+    Unmend {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        marks: Vec<SnagMark>,
+    },
+    /// Leave these as they are: they are meant, or not worth it.
+    Leave {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        marks: Vec<SnagMark>,
+    },
+    /// Leave these no longer.
+    Reconsider {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        marks: Vec<SnagMark>,
+    },
+    /// Switch a pass on or off.
+    SwitchPass {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        pass: PassId,
+        /// On or off.
+        on: bool,
+    },
+    /// Take so much of a mend pass's change, 0 to 1.
+    SetAmount {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        pass: PassId,
+        /// How much.
+        amount: f64,
+    },
+    /// Put a pass at another place in the list.
+    MovePass {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        pass: PassId,
+        /// Its new index; the end when larger.
+        to: usize,
+    },
+    /// Take a pass out of the list.
+    RemovePass {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        pass: PassId,
+    },
+    /// The source is to be found elsewhere, or has changed and is accepted.
+    Relocate {
+        /// Which source.
+        source: usize,
+        /// Where it is now.
+        to: SourceRef,
+    },
+}
+
+/// An edit that does not fit the document.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+pub enum EditError {
+    /// No such clip.
+    #[error("expected one of {count} clips, found number {work}")]
+    NoSuchWork {
+        /// What was asked for.
+        work: usize,
+        /// How many there are.
+        count: usize,
+    },
+    /// No such pass.
+    #[error("expected one of {count} passes, found id {id}", id = pass.0)]
+    NoSuchPass {
+        /// What was asked for.
+        pass: PassId,
+        /// How many there are.
+        count: usize,
+    },
+    /// No such source.
+    #[error("expected one of {count} sources, found number {source_index}")]
+    NoSuchSource {
+        /// What was asked for.
+        source_index: usize,
+        /// How many there are.
+        count: usize,
+    },
+    /// An amount outside its range.
+    #[error("expected an amount from 0 to 1, found {0}")]
+    Amount(f64),
+}
+
+impl Edit {
+    /// What the history calls it.
+    pub fn label(&self) -> String {
+        let counted =
+            |verb: &str, count: usize| format!("{verb} {count} snag{}", if count == 1 { "" } else { "s" });
+        match self {
+            Self::Mend { snags, .. } => match snags.as_slice() {
+                [only] => format!("Mend {} at frame {}", only.kind, only.first_frame),
+                several => counted("Mend", several.len()),
+            },
+            Self::Unmend { marks, .. } => counted("Take back", marks.len()),
+            Self::Leave { marks, .. } => counted("Leave", marks.len()),
+            Self::Reconsider { marks, .. } => counted("Reconsider", marks.len()),
+            Self::SwitchPass { on: true, .. } => "Switch pass on".to_owned(),
+            Self::SwitchPass { on: false, .. } => "Switch pass off".to_owned(),
+            Self::SetAmount { amount, .. } => format!("Set amount to {:.0} %", amount * 100.0),
+            Self::MovePass { .. } => "Move pass".to_owned(),
+            Self::RemovePass { .. } => "Remove pass".to_owned(),
+            Self::Relocate { .. } => "Relocate source".to_owned(),
+        }
+    }
+
+    /// The document after this edit.
+    ///
+    /// # Errors
+    /// When the edit names a clip, pass or source that is not there, or an amount outside its range.
+    pub fn apply(&self, document: &Document) -> Result<Document, EditError> {
+        let mut next = document.clone();
+        match self {
+            Self::Mend { work, snags } => work_at(&mut next, *work)?.add_mends(snags),
+            Self::Unmend { work, marks } => work_at(&mut next, *work)?.remove_mends(marks),
+            Self::Leave { work, marks } => {
+                let work = work_at(&mut next, *work)?;
+                work.remove_mends(marks);
+                let new: Vec<_> = marks.iter().copied().filter(|&mark| !work.leaves(mark)).collect();
+                work.left.extend(new);
+            }
+            Self::Reconsider { work, marks } => {
+                work_at(&mut next, *work)?.left.retain(|mark| !marks.contains(mark));
+            }
+            Self::SwitchPass { work, pass, on } => {
+                let passes = &mut work_at(&mut next, *work)?.passes;
+                let place = place_of(passes, *pass)?;
+                passes[place].on = *on;
+            }
+            Self::SetAmount { work, pass, amount } => {
+                if !(0.0..=1.0).contains(amount) {
+                    return Err(EditError::Amount(*amount));
+                }
+                let passes = &mut work_at(&mut next, *work)?.passes;
+                let place = place_of(passes, *pass)?;
+                match &mut passes[place].step {
+                    PassStep::Mend(mend) => mend.amount = *amount,
+                }
+            }
+            Self::MovePass { work, pass, to } => {
+                let passes = &mut work_at(&mut next, *work)?.passes;
+                let moved = passes.remove(place_of(passes, *pass)?);
+                passes.insert((*to).min(passes.len()), moved);
+            }
+            Self::RemovePass { work, pass } => {
+                let passes = &mut work_at(&mut next, *work)?.passes;
+                passes.remove(place_of(passes, *pass)?);
+            }
+            Self::Relocate { source, to } => {
+                let count = next.sources.len();
+                let error = EditError::NoSuchSource { source_index: *source, count };
+                *next.sources.get_mut(*source).ok_or(error)? = to.clone();
+            }
+        }
+        Ok(next)
+    }
+}
+
+fn work_at(document: &mut Document, work: usize) -> Result<&mut ClipWork, EditError> {
+    let count = document.works.len();
+    document.works.get_mut(work).ok_or(EditError::NoSuchWork { work, count })
+}
+
+fn place_of(passes: &[super::Pass], pass: PassId) -> Result<usize, EditError> {
+    let error = EditError::NoSuchPass { pass, count: passes.len() };
+    passes.iter().position(|own| own.id == pass).ok_or(error)
+}

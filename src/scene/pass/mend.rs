@@ -1,0 +1,86 @@
+//! The pass that mends snags of one kind.
+
+use crate::clip::{Clip, RotationTrack};
+use crate::mend::{self, MendError};
+use crate::rotor::slerp;
+use crate::snag::{Snag, SnagKind};
+
+/// Mends a list of snags of one kind.
+#[derive(Clone, Debug, PartialEq)]
+pub struct MendPass {
+    /// The kind of all its snags.
+    pub kind: SnagKind,
+    /// The snags it mends, in the order they were accepted.
+    pub snags: Vec<Snag>,
+    /// How much of the change is taken, 0 to 1. Kinds that keep every pose are always taken whole.
+    pub amount: f64,
+}
+
+/// Names a snag among all snags of a clip.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub struct SnagMark {
+    /// Its kind.
+    pub kind: SnagKind,
+    /// Its joint in the clip's skeleton.
+    pub joint: usize,
+    /// Its first key.
+    pub first_key: usize,
+    /// Its last key.
+    pub last_key: usize,
+}
+
+impl SnagMark {
+    /// The mark of a snag.
+    pub fn of(snag: &Snag) -> Self {
+        Self { kind: snag.kind, joint: snag.joint, first_key: snag.first_key, last_key: snag.last_key }
+    }
+}
+
+impl MendPass {
+    /// A pass that takes its mends whole.
+    pub fn new(kind: SnagKind, snags: Vec<Snag>) -> Self {
+        Self { kind, snags, amount: 1.0 }
+    }
+
+    /// A short title for lists, with the number of snags.
+    pub fn title(&self) -> String {
+        let count = self.snags.len();
+        format!("Mend {} ({count} snag{})", self.kind, if count == 1 { "" } else { "s" })
+    }
+
+    /// The clip with all its snags mended.
+    ///
+    /// # Errors
+    /// When a snag does not fit the clip.
+    pub fn apply(&self, clip: &Clip) -> Result<Clip, MendError> {
+        let mut mended = clip.clone();
+        for snag in &self.snags {
+            mended = mend::apply(&mended, snag)?;
+        }
+        if self.amount < 1.0 && moves_poses(self.kind) {
+            for joint in 0..mended.joints.len() {
+                if let (Some(before), Some(after)) = (clip.rotation(joint), mended.rotation(joint))
+                    && !clip.same_joint(&mended, joint)
+                {
+                    let part = partly(before, after, self.amount);
+                    mended = mended.with_rotation(joint, part);
+                }
+            }
+        }
+        Ok(mended)
+    }
+}
+
+fn moves_poses(kind: SnagKind) -> bool {
+    matches!(kind, SnagKind::HalfTurn | SnagKind::Spike)
+}
+
+/// `before` moved by `amount` of its way to `after`, key by key.
+fn partly(before: &RotationTrack, after: &RotationTrack, amount: f64) -> RotationTrack {
+    let changes: Vec<_> = after
+        .changed_keys(before)
+        .into_iter()
+        .map(|key| (key, slerp(before.sound_key(key), after.sound_key(key), amount)))
+        .collect();
+    before.with_keys(&changes)
+}
