@@ -6,10 +6,11 @@
 //! Conventions: right-handed, Y up, seconds, lengths as in the file, radians, `f64`. Degrees appear at two borders
 //! only: in `exchange` and wherever a person reads or types a number.
 
+#[cfg(feature = "gui")]
+pub mod app;
 pub mod clip;
 pub mod exchange;
 pub mod mend;
 pub mod rotor;
-
 pub mod skeleton;
 pub mod snag;

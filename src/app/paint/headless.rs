@@ -1,0 +1,135 @@
+//! Frames of a screen without a display.
+
+use super::Canvas;
+use super::Painter;
+use super::pixel;
+use crate::app::Screen;
+use egui::Color32;
+use egui::Vec2;
+
+/// Time from one frame to the next.
+const FRAME_SECS: f64 = 1.0 / 60.0;
+
+/// Frames after which a screen that never comes to rest is taken as it is.
+const MAX_FRAMES: usize = 60;
+
+/// A picture of the window.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Picture {
+    /// Pixels in a row.
+    pub width: usize,
+    /// Rows.
+    pub height: usize,
+    /// Red, green, blue, alpha (always 255) of each pixel, row by row from the top.
+    pub rgba: Vec<u8>,
+}
+
+/// A window without a display: runs a screen frame by frame on a clock of its own and draws the last frame.
+pub struct Headless {
+    ctx: egui::Context,
+    painter: Painter,
+    size_points: Vec2,
+    pixels_per_point: f32,
+    time_secs: f64,
+    shapes: Vec<egui::epaint::ClippedShape>,
+    wants_more: bool,
+}
+
+impl std::fmt::Debug for Headless {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        f.debug_struct("Headless")
+            .field("size_points", &self.size_points)
+            .field("pixels_per_point", &self.pixels_per_point)
+            .field("time_secs", &self.time_secs)
+            .finish_non_exhaustive()
+    }
+}
+
+impl Headless {
+    /// A window of the given size in points, with `pixels_per_point` pixels to each, drawn on `n_threads` threads.
+    pub fn new(size_points: Vec2, pixels_per_point: f32, n_threads: usize) -> Self {
+        Self {
+            ctx: egui::Context::default(),
+            painter: Painter::new(n_threads),
+            size_points,
+            pixels_per_point,
+            time_secs: 0.0,
+            shapes: Vec::new(),
+            wants_more: true,
+        }
+    }
+
+    /// The context to make the screen with.
+    pub fn context(&self) -> &egui::Context {
+        &self.ctx
+    }
+
+    /// Runs one frame with the given input.
+    pub fn frame(&mut self, screen: &mut dyn Screen, events: Vec<egui::Event>) {
+        let mut input = egui::RawInput {
+            screen_rect: Some(egui::Rect::from_min_size(egui::Pos2::ZERO, self.size_points)),
+            time: Some(self.time_secs),
+            events,
+            ..Default::default()
+        };
+        let viewport = input.viewports.entry(egui::ViewportId::ROOT).or_default();
+        viewport.native_pixels_per_point = Some(self.pixels_per_point);
+        self.time_secs += FRAME_SECS;
+        let mut output = self.ctx.run_ui(input, |ui| {
+            screen.logic(ui.ctx());
+            screen.ui(ui);
+        });
+        self.painter.update_textures(&mut output.textures_delta);
+        self.shapes = output.shapes;
+        let root = output.viewport_output.get(&egui::ViewportId::ROOT);
+        self.wants_more = root.is_some_and(|root| root.repaint_delay.as_secs_f64() < FRAME_SECS);
+    }
+
+    /// Runs frames until the screen asks for no further one (a second of its time at most).
+    pub fn settle(&mut self, screen: &mut dyn Screen) {
+        for _ in 0..MAX_FRAMES {
+            self.frame(screen, Vec::new());
+            if !self.wants_more {
+                break;
+            }
+        }
+    }
+
+    /// Draws the last frame.
+    pub fn picture(&mut self) -> Picture {
+        let primitives = self.ctx.tessellate(self.shapes.clone(), self.pixels_per_point);
+        draw(&mut self.painter, self.size_points, self.pixels_per_point, &primitives, background(&self.ctx))
+    }
+}
+
+/// A picture of the window at rest: what a person sees who opens it and waits.
+pub fn picture_of(
+    screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>,
+    size_points: Vec2,
+    pixels_per_point: f32,
+) -> Picture {
+    let mut headless = Headless::new(size_points, pixels_per_point, super::default_threads());
+    let mut screen = screen(headless.context());
+    headless.settle(&mut *screen);
+    headless.picture()
+}
+
+/// What shows where the screen draws nothing.
+pub(crate) fn background(ctx: &egui::Context) -> Color32 {
+    ctx.global_style().visuals.panel_fill
+}
+
+/// Draws meshes onto a fresh picture.
+pub(super) fn draw(
+    painter: &mut Painter,
+    size_points: Vec2,
+    pixels_per_point: f32,
+    primitives: &[egui::ClippedPrimitive],
+    background: Color32,
+) -> Picture {
+    let size = (size_points * pixels_per_point).round();
+    let (width, height) = (size.x as usize, size.y as usize);
+    let mut pixels = vec![0; width * height];
+    painter.paint(Canvas { pixels: &mut pixels, width, height }, pixels_per_point, primitives, background);
+    Picture { width, height, rgba: pixels.into_iter().flat_map(pixel::unpack_rgba).collect() }
+}
