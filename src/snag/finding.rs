@@ -11,6 +11,8 @@ pub enum Remedy {
     Normalise,
     /// Turns the sign of the stored numbers (and tangents) round; no pose changes at keys.
     Negate,
+    /// Takes these whole turns out of the three file angles; no pose changes at keys.
+    Unwrap([i32; 3]),
     /// Writes for each key the equal angle triple nearest to the key before it; no pose changes at keys.
     NearestAngles,
     /// Draws the keys anew from the sound motion on both sides.
@@ -19,6 +21,8 @@ pub enum Remedy {
     ShortWay,
     /// Multiplies each key by this turn on the bone side, `q ← q · offset`, and blends the seams.
     TakeOut(Rotor),
+    /// As `TakeOut`, on the parent's side: `q ← offset · q`.
+    TakeOutAbove(Rotor),
     /// Two ways are equally good: only a person can tell. The mend does nothing.
     Ask,
 }
