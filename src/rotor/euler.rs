@@ -115,7 +115,7 @@ impl EulerOrder {
     /// `to_rotor` gives the rotation back to a few times 1e-16 rad, at and near the poles too.
     ///
     /// Source: Bernardes & Viollet 2022, "Quaternion to Euler angles conversion: a direct, general and computationally
-    /// efficient method", PLoS ONE 17(11). The middle angle of the other six orders is taken here from its own sine and
+    /// efficient method", PLOS ONE 17(11). The middle angle of the other six orders is taken here from its own sine and
     /// cosine, so that a tiny one keeps its digits.
     #[must_use]
     pub fn from_rotor(self, rotor: Rotor, last_at_pole: f64) -> [f64; 3] {

@@ -39,8 +39,8 @@ impl Rotor {
         Self::from_xyzw(xyzw).normalize()
     }
 
-    /// The shortest turn from the direction of `from` to that of `to`, whatever their lengths. Exactly opposite
-    /// directions turn half round in some plane that holds them; a vector that is zero or not finite gives no turn.
+    /// The shortest turn from the direction of `from` to that of `to`, whatever their lengths. Directions that
+    /// are opposite to rounding turn half round in some plane that holds them; a vector that is zero or not finite gives no turn.
     ///
     /// The turned `from` meets `to` within rounding, also when the two are nearly opposite.
     ///
@@ -50,7 +50,8 @@ impl Rotor {
     pub fn between(from: DVec3, to: DVec3) -> Self {
         let (Some(u), Some(v)) = (direction(from), direction(to)) else { return Self::IDENTITY };
         let sum = u + v;
-        if sum == DVec3::ZERO {
+        // A sum this small is the rounding of the two unit vectors, and points anywhere.
+        if sum.length() < 4.0 * f64::EPSILON {
             return Self::product_of_vectors(u.any_orthonormal_vector(), u).normalize();
         }
         // For unit vectors 1 + u·v = |u + v|²/2 and u ∧ v = (u + v) ∧ (v − u)/2. The two factors are at right angles, so

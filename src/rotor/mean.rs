@@ -107,9 +107,9 @@ fn symmetric_eigen(mut m: [[f64; 4]; 4]) -> ([f64; 4], [[f64; 4]; 4]) {
             for row in &mut m {
                 (row[p], row[q]) = (cosine * row[p] - sine * row[q], sine * row[p] + cosine * row[q]);
             }
-            for i in 0..4 {
-                (m[p][i], m[q][i]) = (cosine * m[p][i] - sine * m[q][i], sine * m[p][i] + cosine * m[q][i]);
-            }
+            let (upper, lower) = (m[p], m[q]);
+            m[p] = std::array::from_fn(|i| cosine * upper[i] - sine * lower[i]);
+            m[q] = std::array::from_fn(|i| sine * upper[i] + cosine * lower[i]);
             (m[p][q], m[q][p]) = (0.0, 0.0);
             for row in &mut vectors {
                 (row[p], row[q]) = (cosine * row[p] - sine * row[q], sine * row[p] + cosine * row[q]);

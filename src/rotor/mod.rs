@@ -1,22 +1,26 @@
-//! Rotations as rotors: products, exp and log, slerp and squad, swing and twist, Euler angles.
+//! Rotations as rotors: products, exp and log, slerp and squad, splines, means, swing and twist, Euler angles.
 //!
 //! Knows nothing of skeletons, files or screens. Angles are radians. The conventions and their map to quaternions
 //! are on [`Rotor`].
 
 mod bivector;
+mod cumulative;
 mod euler;
 mod interpolate;
 mod matrix;
 mod mean;
 #[expect(clippy::module_inception, reason = "the noun of the file is the noun of the layer")]
 mod rotor;
+mod spline;
 mod swing_twist;
 
 pub use bivector::Bivector;
+pub use cumulative::{b_spline, hermite};
 pub use euler::{Axis, EulerOrder, NoEulerOrder};
 pub use interpolate::{
     mean_rate, nlerp, parabola_rate, slerp, slerp_as_signed, squad, squad_inner, squad_inner_uneven,
 };
 pub use mean::{Mean, chordal_mean, geodesic_mean};
 pub use rotor::Rotor;
+pub use spline::{EndRates, RotationSpline, SplineError};
 pub use swing_twist::SwingTwist;

@@ -6,8 +6,8 @@ use std::f64::consts::PI;
 use glam::{DMat3, DVec3};
 use serde_json::Value;
 use turnwright::rotor::{
-    Bivector, EulerOrder, Rotor, SwingTwist, chordal_mean, mean_rate, parabola_rate, slerp, squad,
-    squad_inner, squad_inner_uneven,
+    Bivector, EndRates, EulerOrder, RotationSpline, Rotor, SwingTwist, chordal_mean, mean_rate,
+    parabola_rate, slerp, squad, squad_inner, squad_inner_uneven,
 };
 
 use crate::support::{Distance, Tally, largest, list, number, numbers, shared_json, unit_rotor};
@@ -21,6 +21,7 @@ fn for_each_case(kind: &'static str, mut check: impl FnMut(&Value, &Value, &Valu
     for case in list(&file["cases"]).iter().filter(|case| case["kind"] == kind) {
         let id = case["id"].as_str().expect("each case has an id");
         let errors = check(&case["in"], &case["out"], case);
+        assert!(!errors.is_empty(), "{id} compares nothing");
         let error = largest(errors.into_iter());
         tally.check(id, error, number(&case["tol"]));
     }
@@ -39,8 +40,8 @@ fn vector(value: &Value) -> DVec3 {
 
 #[test]
 fn no_kind_is_forgotten() {
-    /// Beside the kinds tested in this file.
-    const ELSEWHERE: [&str; 2] = ["rotation_spline", "forward_kinematics"];
+    /// Forward kinematics belongs to the skeleton.
+    const ELSEWHERE: [&str; 1] = ["forward_kinematics"];
     let here = include_str!("rotor_checks.rs");
     let Some(file) = shared_json("checks/rotation_checks.json") else { return };
     let kinds = file["meta"]["kinds"].as_object().expect("the file counts each kind");
@@ -204,6 +205,25 @@ fn squad_nonuniform_mean_velocity() {
 fn squad_nonuniform_three_point() {
     for_each_case("squad_nonuniform_three_point", |input, output, _| {
         check_uneven(input, output, parabola_rate)
+    });
+}
+
+#[test]
+fn rotation_spline() {
+    // The three tolerances of a case are brought to that of the rotation.
+    for_each_case("rotation_spline", |input, output, case| {
+        let (keys, times) = keys_and_times(input);
+        let spline = RotationSpline::new(&times, &keys, EndRates::Secant).expect("sound keys");
+        let [tol, tol_rate, tol_accel] = ["tol", "tol_rate", "tol_accel"].map(|name| number(&case[name]));
+        let at = |sample: &Value| {
+            let t = number(&sample["t"]);
+            [
+                spline.at(t).distance_to(&unit_rotor(&sample["q"])),
+                spline.rate(t).distance_to(&plane_angles(&sample["rate"])) * tol / tol_rate,
+                spline.acceleration(t).distance_to(&plane_angles(&sample["accel"])) * tol / tol_accel,
+            ]
+        };
+        list(&output["samples"]).iter().flat_map(at).collect()
     });
 }
 
