@@ -11,6 +11,7 @@ pub mod app;
 pub mod clip;
 pub mod exchange;
 pub mod mend;
+pub mod raster;
 pub mod rotor;
 pub mod skeleton;
 pub mod snag;

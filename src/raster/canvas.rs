@@ -1,0 +1,509 @@
+//! A picture with a depth for every pixel, and what is drawn on it.
+
+use glam::{DVec3, Vec2};
+
+use crate::raster::camera::{Projection, View};
+use crate::raster::image::{Image, blend_pixel, mix_pixel};
+use crate::raster::palette::Color;
+use crate::raster::shape::{PolygonScan, RoundCone, Sample};
+
+/// The depth of a pixel on which nothing stands.
+const FAR: f32 = f32::NEG_INFINITY;
+
+/// A picture being drawn. Kept and reused from frame to frame, it allocates nothing.
+#[derive(Debug)]
+pub struct Canvas {
+    /// The picture so far.
+    pub image: Image,
+    /// Depth key of each pixel (see [`View::key`]): larger is nearer.
+    depth: Vec<f32>,
+    polygons: PolygonScan,
+    /// Darkness of shadows while a floor is drawn; all zero at other times.
+    shadow_mask: Vec<u8>,
+}
+
+impl Default for Canvas {
+    fn default() -> Self {
+        Self {
+            image: Image::new(0, 0, Color::TRANSPARENT),
+            depth: Vec::new(),
+            polygons: PolygonScan::default(),
+            shadow_mask: Vec::new(),
+        }
+    }
+}
+
+/// What a line or a mark does where something stands nearer to the eye.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Hidden {
+    /// It is drawn over it.
+    Shown,
+    /// It is left out.
+    Cut,
+    /// It is drawn with this share of its opacity.
+    Faint(f32),
+}
+
+/// A place in the picture with its depth key.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) struct Spot {
+    pub(super) pixel: Vec2,
+    pub(super) key: f32,
+}
+
+impl Spot {
+    pub(super) fn new(view: &View, seen: &Projection) -> Self {
+        Self { pixel: seen.pixel.as_vec2(), key: view.key(seen.depth) }
+    }
+
+    /// The place of a world point; nothing behind the eye.
+    pub(super) fn of(view: &View, point: DVec3) -> Option<Self> {
+        view.project(point).map(|seen| Self::new(view, &seen))
+    }
+}
+
+/// On and off lengths of a dashed line, pixels.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Dash {
+    /// Length of a stroke.
+    pub on: f32,
+    /// Length of a gap.
+    pub off: f32,
+}
+
+/// How a line looks.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Stroke {
+    /// Ink.
+    pub color: Color,
+    /// Pixels. Lines under one pixel are one pixel wide and fainter.
+    pub width: f32,
+    /// Solid when absent.
+    pub dash: Option<Dash>,
+    /// What happens behind things.
+    pub hidden: Hidden,
+}
+
+impl Stroke {
+    /// A solid line over everything.
+    pub fn over(color: Color, width: f32) -> Self {
+        Self { color, width, dash: None, hidden: Hidden::Shown }
+    }
+}
+
+/// A limb in the picture: a round cone with depth.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct SolidCone {
+    pub(super) shape: RoundCone,
+    pub(super) key_a: f32,
+    pub(super) key_b: f32,
+    /// How much nearer than its axis the middle of the surface is, in depth keys.
+    pub(super) bulge_a: f32,
+    pub(super) bulge_b: f32,
+}
+
+/// How a limb looks.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct SolidStyle {
+    pub(super) color: Color,
+    /// Colour of the flat mark near end `b`; none for balls.
+    pub(super) mark: Option<Color>,
+    /// A ring of this width (pixels) and colour just inside the outline.
+    pub(super) ring: Option<(f32, Color)>,
+    /// Width of the dark edge laid on what stands well behind the limb, pixels.
+    pub(super) halo: f32,
+}
+
+/// Light from the upper left, a little before the figure; x right, y down, z to the viewer. Unit length.
+const LIGHT: [f32; 3] = [-0.40, -0.62, 0.675];
+
+/// Brightness of a surface with normal (`x`, `y`, `z`), as a factor on its colour: about 0.42 in the shade, 1.08 in
+/// full light.
+#[inline]
+fn shade(x: f32, y: f32, z: f32) -> f32 {
+    let toward = x * LIGHT[0] + y * LIGHT[1] + z * LIGHT[2];
+    // Wrapped diffuse light keeps the shaded side legible; the z term darkens every outline a little, which is what
+    // separates two crossing limbs of one colour.
+    0.42 + 0.46 * (0.5 + 0.5 * toward) + 0.20 * z
+}
+
+#[inline]
+fn lit(color: Color, factor: f32) -> [u8; 3] {
+    let scale = |channel: u8| (f32::from(channel) * factor + 0.5).min(255.0) as u8;
+    [scale(color.r), scale(color.g), scale(color.b)]
+}
+
+impl Canvas {
+    /// A canvas of one colour on which nothing stands.
+    pub fn new(width: usize, height: usize, color: Color) -> Self {
+        let mut canvas = Self::default();
+        canvas.reset(width, height, color);
+        canvas
+    }
+
+    /// Starts over with another size and colour, keeping the memory.
+    pub fn reset(&mut self, width: usize, height: usize, color: Color) {
+        self.image.reset(width, height, color);
+        self.depth.clear();
+        self.depth.resize(self.image.pixels().len(), FAR);
+        if self.shadow_mask.len() != self.depth.len() {
+            self.shadow_mask.clear();
+        }
+    }
+
+    /// Scratch room for the floor's shadows: empty, or one zero for each pixel.
+    pub(super) fn shadow_mask(&mut self) -> &mut Vec<u8> {
+        &mut self.shadow_mask
+    }
+
+    /// Width in pixels.
+    pub fn width(&self) -> usize {
+        self.image.width()
+    }
+
+    /// Height in pixels.
+    pub fn height(&self) -> usize {
+        self.image.height()
+    }
+
+    /// Draws a limb with light, depth and a soft outline. Limbs should come from back to front: depth is right in any
+    /// order, but outlines are blended with what is there already.
+    pub(super) fn solid(&mut self, cone: &SolidCone, style: &SolidStyle) {
+        if cone.shape.is_swallowed() && cone.shape.a != cone.shape.b {
+            // Seen along its axis: two balls, the far one first.
+            let ball = |at: Vec2, radius: f32, key: f32, bulge: f32| SolidCone {
+                shape: RoundCone { a: at, b: at, radius_a: radius, radius_b: radius },
+                key_a: key,
+                key_b: key,
+                bulge_a: bulge,
+                bulge_b: bulge,
+            };
+            let a = ball(cone.shape.a, cone.shape.radius_a, cone.key_a, cone.bulge_a);
+            let b = ball(cone.shape.b, cone.shape.radius_b, cone.key_b, cone.bulge_b);
+            let plain = SolidStyle { mark: None, ..*style };
+            for ball in if cone.key_a < cone.key_b { [a, b] } else { [b, a] } {
+                self.solid(&ball, &plain);
+            }
+            return;
+        }
+        let (width, height) = (self.width(), self.height());
+        let (pixels, depth) = (self.image.pixels_mut(), &mut self.depth[..]);
+        let axis = cone.shape.frame().axis();
+        let length = cone.shape.a.distance(cone.shape.b);
+        let (key_step, bulge_step) = (cone.key_b - cone.key_a, cone.bulge_b - cone.bulge_a);
+        // The mark is a flat band across the limb: its place leaves room for the round end and for the next limb.
+        let mark = style.mark.filter(|_| length > 5.0 * cone.shape.radius_b + 4.0);
+        let mark_half = (0.30 * cone.shape.radius_b).max(0.75);
+        let mark_at = length - 2.2 * cone.shape.radius_b.max(1.0) - mark_half;
+        cone.shape.scan(width, height, style.halo.max(0.5), |index, sample| {
+            let key_axis = cone.key_a + key_step * sample.t;
+            let bulge = cone.bulge_a + bulge_step * sample.t;
+            let coverage = sample.coverage();
+            if coverage <= 0.0 {
+                // Beside the limb: darken what stands well behind it.
+                if depth[index] != FAR && depth[index] < key_axis - 2.0 * bulge {
+                    let near = 1.0 - (sample.distance - 0.5) / (style.halo - 0.5);
+                    mix_pixel(&mut pixels[index], [0, 0, 0], (near * 110.0) as u32);
+                }
+                return;
+            }
+            let (x, y, z) = normal(sample, axis);
+            let key = key_axis + bulge * z;
+            if key <= depth[index] {
+                return;
+            }
+            let factor = shade(x, y, z);
+            let mut rgb = lit(style.color, factor);
+            if let Some(mark_color) = mark {
+                let inside = (mark_half + 0.5 - (sample.along - mark_at).abs()).clamp(0.0, 1.0);
+                if inside > 0.0 {
+                    rgb = mix_rgb(rgb, lit(mark_color, factor), inside);
+                }
+            }
+            if let Some((ring, color)) = style.ring {
+                let inside = (sample.distance + ring + 0.5).clamp(0.0, 1.0);
+                if inside > 0.0 {
+                    rgb = mix_rgb(rgb, [color.r, color.g, color.b], inside);
+                }
+            }
+            if coverage >= 1.0 {
+                pixels[index] = [rgb[0], rgb[1], rgb[2], 255];
+                depth[index] = key;
+            } else {
+                mix_pixel(&mut pixels[index], rgb, (coverage * 255.0 + 0.5) as u32);
+                if coverage >= 0.5 {
+                    depth[index] = key;
+                }
+            }
+        });
+    }
+
+    /// Draws a line between two places; `ink(t)` is the share of its opacity at `t` of the way (0..=1 in pixels).
+    /// `dashed_before` is the length of the dash pattern already used up by earlier pieces, pixels.
+    pub(super) fn line_with(
+        &mut self,
+        a: Spot,
+        b: Spot,
+        stroke: &Stroke,
+        dashed_before: f32,
+        ink: impl Fn(f32) -> f32,
+    ) {
+        let (width, height) = (self.width(), self.height());
+        let (pixels, depth) = (self.image.pixels_mut(), &self.depth[..]);
+        let thin = stroke.width.clamp(0.0, 1.0);
+        let radius = stroke.width.max(1.0) / 2.0;
+        let length = a.pixel.distance(b.pixel);
+        let shape = RoundCone { a: a.pixel, b: b.pixel, radius_a: radius, radius_b: radius };
+        shape.scan(width, height, 0.5, |index, sample| {
+            let hidden = hidden_share(stroke.hidden, a.key + (b.key - a.key) * sample.t, depth[index]);
+            if hidden == 0.0 {
+                return;
+            }
+            let dashed = stroke.dash.map_or(1.0, |dash| dash_share(dash, dashed_before + length * sample.t));
+            let share = thin * hidden * dashed * ink(sample.t) * sample.coverage();
+            blend_pixel(&mut pixels[index], stroke.color, share);
+        });
+    }
+
+    /// Draws a line between two world points.
+    pub fn line(&mut self, view: &View, from: DVec3, to: DVec3, stroke: &Stroke) {
+        self.polyline(view, &[from, to], stroke);
+    }
+
+    /// Draws a line through world points; dashes run on over the corners. Points that are not finite leave a gap.
+    pub fn polyline(&mut self, view: &View, points: &[DVec3], stroke: &Stroke) {
+        let mut dashed = 0.0;
+        for pair in points.windows(2) {
+            if let Some([(a, _), (b, _)]) = view.project_line(pair[0], pair[1]) {
+                let (a, b) = (Spot::new(view, &a), Spot::new(view, &b));
+                self.line_with(a, b, stroke, dashed, |_| 1.0);
+                dashed += a.pixel.distance(b.pixel);
+            }
+        }
+    }
+
+    /// Draws a line through places of the picture (pixels), over everything.
+    pub fn flat_polyline(&mut self, points: &[Vec2], stroke: &Stroke) {
+        let over = Stroke { hidden: Hidden::Shown, ..*stroke };
+        let mut dashed = 0.0;
+        for pair in points.windows(2) {
+            let spot = |pixel| Spot { pixel, key: 0.0 };
+            self.line_with(spot(pair[0]), spot(pair[1]), &over, dashed, |_| 1.0);
+            dashed += pair[0].distance(pair[1]);
+        }
+    }
+
+    /// Draws a round dot of `radius` pixels at a world point.
+    pub fn dot(&mut self, view: &View, point: DVec3, radius: f32, color: Color, hidden: Hidden) {
+        if let Some(spot) = Spot::of(view, point) {
+            let stroke = Stroke { color, width: 2.0 * radius, dash: None, hidden };
+            self.line_with(spot, spot, &stroke, 0.0, |_| 1.0);
+        }
+    }
+
+    /// Draws a round dot of `radius` pixels at a place in the picture.
+    pub fn flat_dot(&mut self, at: Vec2, radius: f32, color: Color) {
+        let spot = Spot { pixel: at, key: 0.0 };
+        self.line_with(spot, spot, &Stroke::over(color, 2.0 * radius), 0.0, |_| 1.0);
+    }
+
+    /// Draws a ring of `radius` pixels at a place in the picture.
+    pub fn flat_ring(&mut self, at: Vec2, radius: f32, stroke_width: f32, color: Color) {
+        let (width, height) = (self.width(), self.height());
+        let pixels = self.image.pixels_mut();
+        let shape = RoundCone { a: at, b: at, radius_a: radius, radius_b: radius };
+        shape.scan(width, height, stroke_width, |index, sample| {
+            let coverage = (stroke_width / 2.0 + 0.5 - sample.distance.abs()).clamp(0.0, 1.0);
+            blend_pixel(&mut pixels[index], color, coverage);
+        });
+    }
+
+    /// Fills a flat outline of the picture (pixels), over everything.
+    pub fn flat_polygon(&mut self, points: &[Vec2], color: Color) {
+        self.flat_polygons(&[points], color);
+    }
+
+    /// Fills nested outlines of the picture by the odd-even rule, over everything.
+    pub fn flat_polygons(&mut self, rings: &[&[Vec2]], color: Color) {
+        let (width, height) = (self.width(), self.height());
+        let pixels = self.image.pixels_mut();
+        self.polygons.scan(rings, width, height, |x, y, coverage| {
+            blend_pixel(&mut pixels[y * width + x], color, coverage);
+        });
+    }
+
+    /// Fills an outline that is flat in the world. Nothing is drawn when a part of it is behind the eye.
+    pub fn polygon(&mut self, view: &View, points: &[DVec3], color: Color, hidden: Hidden) {
+        let spots: Option<Vec<Spot>> = points.iter().map(|&point| Spot::of(view, point)).collect();
+        let Some(spots) = spots.filter(|spots| spots.len() >= 3) else { return };
+        let outline: Vec<Vec2> = spots.iter().map(|spot| spot.pixel).collect();
+        let plane = KeyPlane::through(&spots);
+        let (width, height) = (self.width(), self.height());
+        let (pixels, depth) = (self.image.pixels_mut(), &self.depth[..]);
+        self.polygons.scan(&[&outline], width, height, |x, y, coverage| {
+            let index = y * width + x;
+            let key = plane.key(Vec2::new(x as f32 + 0.5, y as f32 + 0.5));
+            blend_pixel(&mut pixels[index], color, coverage * hidden_share(hidden, key, depth[index]));
+        });
+    }
+}
+
+/// The surface normal of a limb at a sample: x right, y down, z to the viewer.
+#[inline]
+fn normal(sample: &Sample, axis: Vec2) -> (f32, f32, f32) {
+    let inverse = 1.0 / sample.radius.max(0.25);
+    let (along, across) = (sample.out.x * inverse, sample.out.y * inverse);
+    let flat = along * along + across * across;
+    let z = (1.0 - flat).max(0.0).sqrt();
+    // A pixel on the rim lies half outside: hold its normal to unit length.
+    let hold = if flat > 1.0 { flat.sqrt().recip() } else { 1.0 };
+    (hold * (along * axis.x - across * axis.y), hold * (along * axis.y + across * axis.x), z)
+}
+
+#[inline]
+fn mix_rgb(from: [u8; 3], to: [u8; 3], weight: f32) -> [u8; 3] {
+    let mix = |a: u8, b: u8| (f32::from(a) + (f32::from(b) - f32::from(a)) * weight + 0.5) as u8;
+    [mix(from[0], to[0]), mix(from[1], to[1]), mix(from[2], to[2])]
+}
+
+/// The share of its opacity something keeps at depth `key` on a pixel where something stands at `standing`.
+#[inline]
+fn hidden_share(hidden: Hidden, key: f32, standing: f32) -> f32 {
+    match hidden {
+        Hidden::Shown => 1.0,
+        _ if key > standing => 1.0,
+        Hidden::Cut => 0.0,
+        Hidden::Faint(share) => share,
+    }
+}
+
+/// Whether a dash is on at `at` pixels, with soft ends.
+#[inline]
+fn dash_share(dash: Dash, at: f32) -> f32 {
+    let place = at.rem_euclid((dash.on + dash.off).max(1.0));
+    (dash.on - place + 0.5).min(place + 0.5).clamp(0.0, 1.0)
+}
+
+/// Depth keys over a flat face: straight in the picture.
+#[derive(Clone, Copy, Debug)]
+struct KeyPlane {
+    at: Vec2,
+    key: f32,
+    slope: Vec2,
+}
+
+impl KeyPlane {
+    /// Through the three spots of the widest corner; level when all lie on one line of the picture.
+    fn through(spots: &[Spot]) -> Self {
+        let first = spots[0];
+        let corner = |i: usize| (spots[i].pixel - first.pixel, spots[i].key - first.key);
+        let third = spots.len() / 3;
+        let ((u, key_u), (v, key_v)) = (corner(third.max(1)), corner((2 * third).max(2)));
+        let area = u.perp_dot(v);
+        let slope = Vec2::new(key_u * v.y - key_v * u.y, key_v * u.x - key_u * v.x) / area;
+        Self { at: first.pixel, key: first.key, slope: if slope.is_finite() { slope } else { Vec2::ZERO } }
+    }
+
+    fn key(&self, pixel: Vec2) -> f32 {
+        self.key + self.slope.dot(pixel - self.at)
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::raster::camera::Camera;
+
+    const WHITE: Color = Color::rgb(0xFF_FF_FF);
+    const RED: Color = Color::rgb(0xFF_00_00);
+
+    fn limb(a: [f32; 2], b: [f32; 2], key: f32) -> SolidCone {
+        SolidCone {
+            shape: RoundCone { a: a.into(), b: b.into(), radius_a: 5.0, radius_b: 5.0 },
+            key_a: key,
+            key_b: key,
+            bulge_a: 0.01,
+            bulge_b: 0.01,
+        }
+    }
+
+    fn plain(color: Color) -> SolidStyle {
+        SolidStyle { color, mark: None, ring: None, halo: 0.5 }
+    }
+
+    #[test]
+    fn the_nearer_limb_wins_in_either_order() {
+        let near = (limb([10.0, 30.0], [50.0, 30.0], 2.0), plain(RED));
+        let far = (limb([30.0, 10.0], [30.0, 50.0], 1.0), plain(WHITE));
+        for order in [[near, far], [far, near]] {
+            let mut canvas = Canvas::new(60, 60, Color::rgb(0));
+            for (cone, style) in order {
+                canvas.solid(&cone, &style);
+            }
+            let crossing = canvas.image.pixel(30, 30).unwrap();
+            assert!(crossing[0] > 150 && crossing[1] == 0, "{crossing:?}");
+            assert!(canvas.image.pixel(30, 15).unwrap()[1] > 150);
+        }
+    }
+
+    #[test]
+    fn a_limb_seen_end_on_shows_the_nearer_end() {
+        let mut cone = limb([30.0, 30.0], [31.0, 30.0], 1.0);
+        (cone.shape.radius_b, cone.key_b) = (2.0, 3.0);
+        let mut canvas = Canvas::new(60, 60, Color::rgb(0));
+        canvas.solid(&cone, &plain(WHITE));
+        let depth_at_middle = canvas.depth[30 * 60 + 31];
+        assert!(depth_at_middle > 2.9, "{depth_at_middle}");
+        assert!(canvas.image.pixel(34, 30).unwrap()[0] > 100);
+    }
+
+    #[test]
+    fn hidden_lines_are_cut_faint_or_shown() {
+        let view = Camera::default().view(60, 60);
+        let target = Camera::default().target;
+        let behind = [target - view.back + view.right, target - view.back - view.right];
+        let ink_behind = |hidden| {
+            let mut canvas = Canvas::new(60, 60, Color::rgb(0));
+            canvas.solid(&limb([30.0, 10.0], [30.0, 50.0], view.key(view.distance)), &plain(RED));
+            let before = canvas.image.pixel(30, 30).unwrap()[2];
+            canvas.polyline(&view, &behind, &Stroke { color: WHITE, width: 2.0, dash: None, hidden });
+            canvas.image.pixel(30, 30).unwrap()[2] - before
+        };
+        assert_eq!(ink_behind(Hidden::Cut), 0);
+        assert_eq!(ink_behind(Hidden::Shown), 255);
+        assert!((120..=135).contains(&ink_behind(Hidden::Faint(0.5))));
+    }
+
+    #[test]
+    fn dashes_cover_their_share_and_run_over_corners() {
+        let ink = |dash| {
+            let mut canvas = Canvas::new(120, 40, Color::rgb(0));
+            let stroke = Stroke { dash, ..Stroke::over(WHITE, 1.0) };
+            canvas.flat_polyline(
+                &[Vec2::new(10.0, 20.5), Vec2::new(37.0, 20.5), Vec2::new(110.0, 20.5)],
+                &stroke,
+            );
+            canvas.image.pixels().iter().map(|pixel| u32::from(pixel[0])).sum::<u32>()
+        };
+        let (solid, dashed) = (ink(None), ink(Some(Dash { on: 6.0, off: 4.0 })));
+        let share = f64::from(dashed) / f64::from(solid);
+        assert!((share - 0.6).abs() < 0.03, "{share}");
+    }
+
+    #[test]
+    fn a_tilted_face_is_hidden_where_it_goes_behind() {
+        let camera = Camera::default();
+        let view = camera.view(80, 80);
+        // A square lying in the line of sight: its near half before the target, its far half behind it.
+        let (u, v) = (view.right * 0.5, (view.back + view.up * 0.5) * 0.5);
+        let square = [u + v, u - v, -u - v, v - u].map(|corner| camera.target + corner);
+        let mut canvas = Canvas::new(80, 80, Color::rgb(0));
+        canvas.depth.fill(view.key(view.distance));
+        canvas.polygon(&view, &square, WHITE, Hidden::Cut);
+        let inked_above = canvas.image.pixels()[..80 * 38].iter().filter(|pixel| pixel[0] > 0).count();
+        let inked_below = canvas.image.pixels()[80 * 42..].iter().filter(|pixel| pixel[0] > 0).count();
+        // The upper half of the square leans towards the eye.
+        assert!(inked_above > 100 && inked_below == 0 || inked_below > 100 && inked_above == 0);
+        assert!(inked_above > inked_below, "{inked_above} {inked_below}");
+    }
+}

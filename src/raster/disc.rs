@@ -1,0 +1,129 @@
+//! Marks around a joint: the plane disc that turns it, and the reach its limits allow.
+
+use std::f64::consts::TAU;
+
+use glam::{DVec3, Vec2};
+
+use crate::raster::camera::View;
+use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke};
+use crate::raster::palette::{Color, Theme};
+use crate::raster::text::{Align, TextStyle, draw_text_centered, text_width};
+
+/// A disc in the plane of a turn, with the turned part filled.
+#[derive(Clone, Debug, PartialEq)]
+pub struct PlaneDisc {
+    /// The joint, world.
+    pub center: DVec3,
+    /// Unit vector in the plane; angles count from it, world.
+    pub u: DVec3,
+    /// Unit vector in the plane, square to `u`; positive turns go from `u` to `v`. World.
+    pub v: DVec3,
+    /// World units.
+    pub radius: f64,
+    /// The old direction, radians from `u`.
+    pub from_rad: f64,
+    /// The new direction, radians from `u`; more than a whole turn away fills the disc.
+    pub to_rad: f64,
+    /// Ink; one of the planes' colours or the selection's.
+    pub color: Color,
+    /// What is written at the rim: the plane's letters.
+    pub name: String,
+    /// What is written in the turned part: the angle.
+    pub angle_text: String,
+}
+
+impl PlaneDisc {
+    /// The point on the rim at an angle (radians) from `u`, world.
+    pub fn rim(&self, angle_rad: f64) -> DVec3 {
+        self.center + (self.u * angle_rad.cos() + self.v * angle_rad.sin()) * self.radius
+    }
+}
+
+/// The directions a limb may point in: a cone whose rim need not be round.
+#[derive(Clone, Debug, PartialEq)]
+pub struct ReachCone {
+    /// The joint, world.
+    pub apex: DVec3,
+    /// Closed rim in order, world.
+    pub rim: Vec<DVec3>,
+    /// Ink.
+    pub color: Color,
+}
+
+/// Draws a disc: faint over the figure, so that both can be read.
+pub(super) fn draw_disc(canvas: &mut Canvas, view: &View, disc: &PlaneDisc, theme: &Theme, scale: f32) {
+    let faint = Hidden::Faint(0.45);
+    let line = Stroke { color: disc.color, width: 1.5 * scale, dash: None, hidden: faint };
+    let rim: Vec<DVec3> = (0..=72).map(|i| disc.rim(TAU * f64::from(i) / 72.0)).collect();
+    canvas.polygon(view, &rim[..72], disc.color.with_alpha(0.10), faint);
+    canvas.polyline(view, &rim, &line);
+
+    let turn = (disc.to_rad - disc.from_rad).clamp(-TAU, TAU);
+    let steps = ((turn.abs() / TAU * 72.0).ceil() as usize).max(1);
+    let arc: Vec<DVec3> =
+        (0..=steps).map(|i| disc.rim(disc.from_rad + turn * i as f64 / steps as f64)).collect();
+    let sector: Vec<DVec3> = std::iter::once(disc.center).chain(arc.iter().copied()).collect();
+    canvas.polygon(view, &sector, disc.color.with_alpha(0.38), Hidden::Faint(0.7));
+    canvas.polyline(view, &arc, &Stroke { width: 3.5 * scale, ..line });
+    // The old direction is grey like every "before", the new one solid with a grip at its end.
+    canvas.line(view, disc.center, arc[0], &Stroke { color: theme.before, ..line });
+    let new_end = arc[arc.len() - 1];
+    canvas.line(view, disc.center, new_end, &Stroke { width: 2.5 * scale, hidden: Hidden::Shown, ..line });
+    canvas.dot(view, new_end, 5.0 * scale, disc.color, Hidden::Shown);
+    canvas.dot(view, new_end, 2.0 * scale, disc.color.readable_ink(), Hidden::Shown);
+
+    let middle = disc.from_rad + turn / 2.0;
+    if !disc.angle_text.is_empty()
+        && let Some(spot) = Spot::of(view, disc.center.lerp(disc.rim(middle), 0.62))
+    {
+        draw_plate(canvas, &disc.angle_text, spot.pixel, theme, scale);
+    }
+    if !disc.name.is_empty()
+        && let (Some(out), Some(center)) = (Spot::of(view, disc.rim(middle)), Spot::of(view, disc.center))
+    {
+        let away = (out.pixel - center.pixel).normalize_or(Vec2::NEG_Y);
+        let at = out.pixel + away * 12.0 * scale;
+        let style = TextStyle::words(14.0 * scale, theme.text).aligned(Align::Center);
+        draw_text_centered(&mut canvas.image, &disc.name, at, &style);
+    }
+}
+
+/// Draws a reach: a pale cone with a firm rim.
+pub(super) fn draw_reach(canvas: &mut Canvas, view: &View, reach: &ReachCone, scale: f32) {
+    let Some(&first) = reach.rim.first() else { return };
+    let hidden = Hidden::Faint(0.35);
+    let closed: Vec<DVec3> = reach.rim.iter().copied().chain(std::iter::once(first)).collect();
+    for pair in closed.windows(2) {
+        canvas.polygon(view, &[reach.apex, pair[0], pair[1]], reach.color.with_alpha(0.10), hidden);
+    }
+    let line = Stroke { color: reach.color, width: 1.5 * scale, dash: None, hidden };
+    canvas.polyline(view, &closed, &line);
+    for &end in reach.rim.iter().step_by((reach.rim.len() / 8).max(1)) {
+        canvas.line(
+            view,
+            reach.apex,
+            end,
+            &Stroke { color: reach.color.with_alpha(0.5), width: scale, ..line },
+        );
+    }
+}
+
+/// Writes a short text on a plate that keeps it legible over anything, centred at `at` and kept inside the picture.
+pub(super) fn draw_plate(canvas: &mut Canvas, text: &str, at: Vec2, theme: &Theme, scale: f32) {
+    let style = TextStyle::words(14.0 * scale, theme.text);
+    let half = Vec2::new(text_width(text, &style) / 2.0 + 5.0 * scale, 9.5 * scale);
+    let size = Vec2::new(canvas.width() as f32, canvas.height() as f32);
+    let at = at.max(half + 1.0).min((size - half - 1.0).max(half + 1.0));
+    let radius = 4.0 * scale;
+    let mut outline = Vec::with_capacity(24);
+    for (corner, (x, y)) in [(1.0, 1.0), (-1.0, 1.0), (-1.0, -1.0), (1.0, -1.0)].into_iter().enumerate() {
+        let middle = at + Vec2::new(x, y) * (half - radius);
+        for i in 0..6 {
+            let angle = (corner as f32 + i as f32 / 5.0) * std::f32::consts::FRAC_PI_2;
+            outline.push(middle + Vec2::from_angle(angle) * radius);
+        }
+    }
+    canvas.flat_polygon(&outline, theme.panel.with_alpha(0.88));
+    let centered = style.aligned(Align::Center);
+    draw_text_centered(&mut canvas.image, text, at, &centered);
+}

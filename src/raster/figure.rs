@@ -1,0 +1,290 @@
+//! A pose as limbs: how thick they are, how they are drawn, and which joint is under the pointer.
+
+use glam::{DVec2, DVec3};
+
+use crate::raster::camera::{Bounds, View};
+use crate::raster::canvas::{Canvas, Dash, Hidden, SolidCone, SolidStyle, Spot, Stroke};
+use crate::raster::palette::{Color, Theme};
+use crate::raster::shape::RoundCone;
+
+/// One limb of a pose.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct FigureLimb {
+    /// Where the limb's joint stands, world.
+    pub from: DVec3,
+    /// Where it ends: at a child joint or a tip. The same place as `from` makes a small ball.
+    pub to: DVec3,
+    /// The joint that turns this limb.
+    pub joint: usize,
+}
+
+/// The limbs of a pose: from each joint to each of its children and tips; a small ball for a joint with neither.
+///
+/// `parents` and `positions` (world) have one entry for each joint; `tips` are the ends of last limbs (a BVH file's
+/// End Sites) with the joint they hang on. A parent that is no joint of the list counts as none.
+pub fn limbs_of_pose(
+    parents: &[Option<usize>],
+    positions: &[DVec3],
+    tips: &[(usize, DVec3)],
+) -> Vec<FigureLimb> {
+    let mut has_limb = vec![false; positions.len()];
+    let mut limbs = Vec::with_capacity(positions.len() + tips.len());
+    let to_children = parents.iter().zip(positions).filter_map(|(&parent, &to)| Some((parent?, to)));
+    for (joint, to) in to_children.chain(tips.iter().copied()) {
+        if let Some(&from) = positions.get(joint) {
+            has_limb[joint] = true;
+            limbs.push(FigureLimb { from, to, joint });
+        }
+    }
+    for (joint, &at) in positions.iter().enumerate() {
+        if !has_limb[joint] {
+            limbs.push(FigureLimb { from: at, to: at, joint });
+        }
+    }
+    limbs
+}
+
+/// How thick the limbs of one skeleton are, whatever its unit.
+///
+/// Made once from a pose, or best from the rest pose, and kept, so that limbs do not swell and shrink while they move.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Girth {
+    /// The length of a long limb of this skeleton, world units.
+    long_limb: f64,
+}
+
+impl Girth {
+    /// From the limbs of a pose. Works for a skeleton one unit or two hundred units high.
+    pub fn of_limbs(limbs: &[FigureLimb]) -> Self {
+        let mut lengths: Vec<f64> = limbs
+            .iter()
+            .map(|limb| limb.from.distance(limb.to))
+            .filter(|length| length.is_finite() && *length > 0.0)
+            .collect();
+        lengths.sort_by(f64::total_cmp);
+        // Not the longest: one limb may reach from the world's origin to the hips.
+        let place = lengths.len().saturating_sub(1) * 85 / 100;
+        Self { long_limb: lengths.get(place).copied().unwrap_or(1.0) }
+    }
+
+    /// Radius at the joint and at the end of a limb of this length.
+    fn radii(self, length: f64) -> [f64; 2] {
+        if length <= 1e-9 * self.long_limb {
+            return [0.055 * self.long_limb; 2];
+        }
+        let at_joint = (0.13 * length).clamp(0.035 * self.long_limb, 0.15 * self.long_limb);
+        [at_joint, 0.62 * at_joint]
+    }
+}
+
+/// What a figure stands for, and with it its looks.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum FigureStyle {
+    /// The result: solid limbs in colour.
+    After,
+    /// The source: thin and grey.
+    Before,
+    /// A neighbouring pose: faint, grey, dashed.
+    Ghost,
+}
+
+impl FigureStyle {
+    /// Whether the floor shows its shadow: one is enough.
+    pub fn casts_shadow(self) -> bool {
+        self == Self::After
+    }
+}
+
+/// A pose to draw.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Figure {
+    /// Its limbs.
+    pub limbs: Vec<FigureLimb>,
+    /// How thick they are.
+    pub girth: Girth,
+    /// How they look.
+    pub style: FigureStyle,
+    /// Joint whose limbs stand out.
+    pub chosen: Option<usize>,
+    /// Joint under the pointer.
+    pub hovered: Option<usize>,
+}
+
+impl Figure {
+    /// A figure with nothing chosen, as thick as its own limbs suggest.
+    pub fn new(limbs: Vec<FigureLimb>, style: FigureStyle) -> Self {
+        let girth = Girth::of_limbs(&limbs);
+        Self { limbs, girth, style, chosen: None, hovered: None }
+    }
+
+    /// The box around all limb ends; nothing when none is finite.
+    pub fn bounds(&self) -> Option<Bounds> {
+        Bounds::of_points(self.limbs.iter().flat_map(|limb| [limb.from, limb.to]))
+    }
+
+    /// The joint whose limb is under `pixel`: the nearest to the eye of those hit, else the closest within
+    /// `slack_px` pixels.
+    pub fn pick(&self, view: &View, pixel: DVec2, slack_px: f32) -> Option<usize> {
+        let mut hit: Option<(f32, usize)> = None;
+        let mut beside: Option<(f32, usize)> = None;
+        for limb in &self.limbs {
+            let Some(cone) = solid_cone(view, limb, self.girth, 1.0, 1.0) else { continue };
+            let sample = cone.shape.frame().sample(pixel.as_vec2() - cone.shape.frame().origin());
+            let key = cone.key_a + (cone.key_b - cone.key_a) * sample.t;
+            if sample.distance <= 0.0 {
+                let surface = key + cone.bulge_a + (cone.bulge_b - cone.bulge_a) * sample.t;
+                if hit.is_none_or(|(nearest, _)| surface > nearest) {
+                    hit = Some((surface, limb.joint));
+                }
+            } else if sample.distance <= slack_px && beside.is_none_or(|(least, _)| sample.distance < least) {
+                beside = Some((sample.distance, limb.joint));
+            }
+        }
+        hit.or(beside).map(|(_, joint)| joint)
+    }
+}
+
+/// The limb in the picture; nothing when it is behind the eye or not finite. Radii are multiplied by `thickness` and
+/// are at least `least_px` pixels.
+pub(super) fn solid_cone(
+    view: &View,
+    limb: &FigureLimb,
+    girth: Girth,
+    thickness: f64,
+    least_px: f32,
+) -> Option<SolidCone> {
+    let [radius_from, radius_to] = girth.radii(limb.from.distance(limb.to)).map(|radius| radius * thickness);
+    let [(a, part_a), (b, part_b)] = view.project_line(limb.from, limb.to)?;
+    let radius = |part: f64| radius_from + (radius_to - radius_from) * part;
+    let px = |part: f64, px_per_unit: f64| ((radius(part) * px_per_unit) as f32).max(least_px);
+    Some(SolidCone {
+        shape: RoundCone {
+            a: a.pixel.as_vec2(),
+            b: b.pixel.as_vec2(),
+            radius_a: px(part_a, a.px_per_unit),
+            radius_b: px(part_b, b.px_per_unit),
+        },
+        key_a: view.key(a.depth),
+        key_b: view.key(b.depth),
+        bulge_a: view.key_slope(a.depth) * radius(part_a) as f32,
+        bulge_b: view.key_slope(b.depth) * radius(part_b) as f32,
+    })
+}
+
+/// Draws figures together, so that their limbs hide each other. `scale` is pixels per point.
+pub(super) fn draw_figures(canvas: &mut Canvas, view: &View, figures: &[&Figure], theme: &Theme, scale: f32) {
+    let mut solids: Vec<(f32, SolidCone, SolidStyle)> = Vec::new();
+    for figure in figures {
+        for limb in &figure.limbs {
+            let cone = match figure.style {
+                FigureStyle::After => solid_cone(view, limb, figure.girth, 1.0, 0.75 * scale),
+                FigureStyle::Before => solid_cone(view, limb, figure.girth, 0.28, 1.1 * scale),
+                FigureStyle::Ghost => None,
+            };
+            if let Some(cone) = cone {
+                let nearest = cone.key_a.midpoint(cone.key_b);
+                solids.push((nearest, cone, limb_style(figure, limb, theme, scale)));
+            }
+        }
+    }
+    solids.sort_by(|a, b| a.0.total_cmp(&b.0));
+    for (_, cone, style) in &solids {
+        canvas.solid(cone, style);
+    }
+    for figure in figures.iter().filter(|figure| figure.style == FigureStyle::Ghost) {
+        draw_ghost(canvas, view, figure, theme, scale);
+    }
+}
+
+fn limb_style(figure: &Figure, limb: &FigureLimb, theme: &Theme, scale: f32) -> SolidStyle {
+    let is_ball = limb.from == limb.to;
+    let is_chosen = figure.chosen == Some(limb.joint);
+    let is_hovered = figure.hovered == Some(limb.joint);
+    let base = match figure.style {
+        FigureStyle::After => theme.after,
+        FigureStyle::Before | FigureStyle::Ghost => theme.before,
+    };
+    let color = if is_chosen { theme.selection } else { base };
+    let color = if is_hovered { color.mix(Color::rgb(0xFF_FF_FF), 0.3) } else { color };
+    let is_solid = figure.style == FigureStyle::After;
+    SolidStyle {
+        color,
+        mark: (is_solid && !is_ball).then(|| color.mix(Color::rgb(0), 0.45)),
+        ring: is_chosen.then_some((1.25 * scale, theme.text)),
+        halo: if is_solid { 2.5 * scale } else { 0.5 },
+    }
+}
+
+fn draw_ghost(canvas: &mut Canvas, view: &View, figure: &Figure, theme: &Theme, scale: f32) {
+    let stroke = Stroke {
+        color: theme.ghost.with_alpha(0.75),
+        width: 1.2 * scale,
+        dash: Some(Dash { on: 5.0 * scale, off: 4.0 * scale }),
+        hidden: Hidden::Cut,
+    };
+    for limb in &figure.limbs {
+        if limb.from == limb.to {
+            canvas.dot(view, limb.from, 1.5 * scale, stroke.color, Hidden::Cut);
+        } else if let Some([(a, _), (b, _)]) = view.project_line(limb.from, limb.to) {
+            canvas.line_with(Spot::new(view, &a), Spot::new(view, &b), &stroke, 0.0, |_| 1.0);
+        }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::raster::camera::Camera;
+
+    fn arm(scale: f64) -> Figure {
+        let positions = [DVec3::ZERO, DVec3::X, DVec3::new(1.6, 0.0, 0.0)].map(|at| at * scale);
+        let parents = [None, Some(0), Some(1)];
+        Figure::new(
+            limbs_of_pose(&parents, &positions, &[(2, DVec3::new(1.8, 0.0, 0.0) * scale)]),
+            FigureStyle::After,
+        )
+    }
+
+    #[test]
+    fn limbs_reach_to_children_and_tips_and_lone_joints_get_balls() {
+        let positions = [DVec3::ZERO, DVec3::Y, DVec3::X, DVec3::Z];
+        let limbs = limbs_of_pose(&[None, Some(0), Some(0), None], &positions, &[(1, DVec3::ONE)]);
+        let found: Vec<(usize, DVec3)> = limbs.iter().map(|limb| (limb.joint, limb.to)).collect();
+        assert_eq!(found, [(0, DVec3::Y), (0, DVec3::X), (1, DVec3::ONE), (2, DVec3::X), (3, DVec3::Z)]);
+        assert_eq!(limbs_of_pose(&[Some(7)], &[DVec3::ZERO], &[(9, DVec3::X)]).len(), 1);
+    }
+
+    #[test]
+    fn limbs_are_as_thick_at_any_unit_and_ignore_broken_ones() {
+        let (small, large) = (arm(1.0), arm(200.0));
+        for (a, b) in small.limbs.iter().zip(&large.limbs) {
+            let [from_a, to_a] = small.girth.radii(a.from.distance(a.to));
+            let [from_b, to_b] = large.girth.radii(b.from.distance(b.to));
+            assert!((from_a * 200.0 - from_b).abs() < 1e-9 && (to_a * 200.0 - to_b).abs() < 1e-9);
+            assert!(from_a > to_a && from_a < 0.2);
+        }
+        let broken = FigureLimb { from: DVec3::NAN, to: DVec3::ZERO, joint: 0 };
+        assert_eq!(Girth::of_limbs(&[broken]), Girth { long_limb: 1.0 });
+        assert_eq!(Figure::new(vec![broken], FigureStyle::After).bounds().unwrap().size(), 0.0);
+    }
+
+    #[test]
+    fn picking_takes_the_limb_under_the_pixel_and_the_nearest_of_two() {
+        let mut figure = arm(1.0);
+        let mut camera = Camera { yaw_rad: 0.0, pitch_rad: 0.0, ..Camera::default() };
+        camera.fit(&figure.bounds().unwrap(), 200, 100, 0.2);
+        let view = camera.view(200, 100);
+        let pixel_of = |point| view.project(point).unwrap().pixel;
+        assert_eq!(figure.pick(&view, pixel_of(DVec3::new(0.5, 0.0, 0.0)), 0.0), Some(0));
+        assert_eq!(figure.pick(&view, pixel_of(DVec3::new(1.3, 0.0, 0.0)), 0.0), Some(1));
+        let above = pixel_of(DVec3::new(1.3, 0.2, 0.0));
+        assert_eq!(figure.pick(&view, above, 0.0), None);
+        assert_eq!(figure.pick(&view, above, 30.0), Some(1));
+        figure.limbs.push(FigureLimb {
+            from: DVec3::new(0.5, -1.0, 0.3),
+            to: DVec3::new(0.5, 1.0, 0.3),
+            joint: 9,
+        });
+        assert_eq!(figure.pick(&view, pixel_of(DVec3::new(0.5, 0.0, 0.0)), 0.0), Some(9));
+    }
+}

@@ -1,0 +1,26 @@
+//! Pictures on the CPU: the skeleton view, plots, the turn map and sheets of several pictures.
+//!
+//! Opens no window and needs no graphics driver. The same input gives the same pixels, on every machine with IEEE
+//! arithmetic. Pixels count from the top left, and the middle of the first one is (0.5, 0.5); lengths called *points*
+//! are pixels divided by the picture's scale.
+
+mod camera;
+mod canvas;
+mod disc;
+mod figure;
+mod floor;
+mod image;
+pub mod palette;
+mod scene_view;
+mod shape;
+mod text;
+
+pub use camera::{Bounds, Camera, Lens, Projection, Ray, StraightView, View};
+pub use canvas::{Canvas, Dash, Hidden, Stroke};
+pub use disc::{PlaneDisc, ReachCone};
+pub use figure::{Figure, FigureLimb, FigureStyle, Girth, limbs_of_pose};
+pub use floor::Floor;
+pub use image::{Image, ImageError};
+pub use palette::{Color, Theme, cividis};
+pub use scene_view::{Label, SceneView, TipPath, render, render_into};
+pub use text::{Align, Face, TextStyle, draw_text, draw_text_centered, elide, format_degrees, text_width};

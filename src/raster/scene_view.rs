@@ -1,0 +1,141 @@
+//! The skeleton view: floor, source, result, neighbouring poses and the marks of the chosen joint, as one picture.
+
+use glam::{DVec3, Vec2};
+
+use crate::raster::camera::{Camera, View};
+use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke};
+use crate::raster::disc::{PlaneDisc, ReachCone, draw_disc, draw_plate, draw_reach};
+use crate::raster::figure::{Figure, draw_figures};
+use crate::raster::floor::{Floor, draw_floor};
+use crate::raster::image::Image;
+use crate::raster::palette::{Color, Theme};
+
+/// The way a joint or tip takes through the world. A dot for each frame shows its speed.
+#[derive(Clone, Debug, PartialEq)]
+pub struct TipPath {
+    /// One place for each frame, world. Places that are not finite leave a gap.
+    pub points: Vec<DVec3>,
+    /// The frame shown, as an index into `points`.
+    pub current: Option<usize>,
+    /// Ink.
+    pub color: Color,
+}
+
+/// A word beside a point of the world.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Label {
+    /// What it names, world.
+    pub at: DVec3,
+    /// The word.
+    pub text: String,
+}
+
+/// All that a skeleton view shows.
+#[derive(Clone, Debug, PartialEq)]
+pub struct SceneView {
+    /// Width of the picture, pixels.
+    pub width: usize,
+    /// Height of the picture, pixels.
+    pub height: usize,
+    /// Pixels per point: widths of lines and sizes of letters are in points.
+    pub scale: f32,
+    /// From where.
+    pub camera: Camera,
+    /// Colours.
+    pub theme: Theme,
+    /// The floor, if any.
+    pub floor: Option<Floor>,
+    /// Whatever poses are shown, each with its style.
+    pub figures: Vec<Figure>,
+    /// Paths of tips.
+    pub tip_paths: Vec<TipPath>,
+    /// Reaches that limits allow.
+    pub reaches: Vec<ReachCone>,
+    /// Discs that turn the chosen joint.
+    pub discs: Vec<PlaneDisc>,
+    /// Words.
+    pub labels: Vec<Label>,
+}
+
+impl SceneView {
+    /// An empty view of this size, one pixel per point.
+    pub fn new(width: usize, height: usize, camera: Camera, theme: Theme) -> Self {
+        Self {
+            width,
+            height,
+            scale: 1.0,
+            camera,
+            theme,
+            floor: None,
+            figures: Vec::new(),
+            tip_paths: Vec::new(),
+            reaches: Vec::new(),
+            discs: Vec::new(),
+            labels: Vec::new(),
+        }
+    }
+
+    /// The camera's view of this picture: for picking and dragging.
+    pub fn view(&self) -> View {
+        self.camera.view(self.width, self.height)
+    }
+}
+
+/// The picture of a view.
+pub fn render(scene: &SceneView) -> Image {
+    let mut canvas = Canvas::default();
+    render_into(scene, &mut canvas);
+    canvas.image
+}
+
+/// The picture of a view, on a canvas kept from frame to frame.
+pub fn render_into(scene: &SceneView, canvas: &mut Canvas) {
+    canvas.reset(scene.width, scene.height, scene.theme.background);
+    let (view, theme, scale) = (scene.view(), &scene.theme, scene.scale);
+    let figures: Vec<&Figure> = scene.figures.iter().collect();
+    if let Some(floor) = &scene.floor {
+        let solid: Vec<&Figure> =
+            figures.iter().copied().filter(|figure| figure.style.casts_shadow()).collect();
+        draw_floor(canvas, &view, floor, &solid, theme, scale);
+    }
+    draw_figures(canvas, &view, &figures, theme, scale);
+    for reach in &scene.reaches {
+        draw_reach(canvas, &view, reach, scale);
+    }
+    for path in &scene.tip_paths {
+        draw_tip_path(canvas, &view, path, theme, scale);
+    }
+    for disc in &scene.discs {
+        draw_disc(canvas, &view, disc, theme, scale);
+    }
+    for label in &scene.labels {
+        draw_label(canvas, &view, label, theme, scale);
+    }
+}
+
+fn draw_tip_path(canvas: &mut Canvas, view: &View, path: &TipPath, theme: &Theme, scale: f32) {
+    let hidden = Hidden::Faint(0.3);
+    let line = Stroke { color: path.color.with_alpha(0.85), width: 1.5 * scale, dash: None, hidden };
+    canvas.polyline(view, &path.points, &line);
+    // Dots closer than this would run into a second, thicker line.
+    let least_gap = 5.0 * scale;
+    let mut last: Option<Vec2> = None;
+    for &point in &path.points {
+        let Some(spot) = Spot::of(view, point) else { continue };
+        if last.is_none_or(|last| last.distance(spot.pixel) >= least_gap) {
+            canvas.dot(view, point, 2.2 * scale, path.color, hidden);
+            last = Some(spot.pixel);
+        }
+    }
+    if let Some(&now) = path.current.and_then(|frame| path.points.get(frame)) {
+        canvas.dot(view, now, 5.5 * scale, theme.background, Hidden::Shown);
+        canvas.dot(view, now, 4.0 * scale, path.color, Hidden::Shown);
+    }
+}
+
+fn draw_label(canvas: &mut Canvas, view: &View, label: &Label, theme: &Theme, scale: f32) {
+    let Some(spot) = Spot::of(view, label.at) else { return };
+    let at = spot.pixel + Vec2::new(0.0, -20.0 * scale);
+    canvas.flat_polyline(&[spot.pixel, at], &Stroke::over(theme.text_faint, scale));
+    draw_plate(canvas, &label.text, at, theme, scale);
+}
