@@ -5,7 +5,7 @@ use glam::{DVec3, Vec2};
 use crate::raster::camera::{Projection, View};
 use crate::raster::image::{Image, blend_pixel, mix_pixel};
 use crate::raster::palette::Color;
-use crate::raster::shape::{PolygonScan, RoundCone, Sample};
+use crate::raster::shape::{ConeFrame, PolygonScan, RoundCone, scan_line};
 
 /// The depth of a pixel on which nothing stands.
 const FAR: f32 = f32::NEG_INFINITY;
@@ -114,23 +114,132 @@ pub(super) struct SolidStyle {
     pub(super) halo: f32,
 }
 
+impl SolidCone {
+    /// The two ends as balls, the far one first: what shows of a limb that points at the eye.
+    fn balls_from_back(&self) -> [Self; 2] {
+        let ball = |at: Vec2, radius: f32, key: f32, bulge: f32| Self {
+            shape: RoundCone { a: at, b: at, radius_a: radius, radius_b: radius },
+            key_a: key,
+            key_b: key,
+            bulge_a: bulge,
+            bulge_b: bulge,
+        };
+        let a = ball(self.shape.a, self.shape.radius_a, self.key_a, self.bulge_a);
+        let b = ball(self.shape.b, self.shape.radius_b, self.key_b, self.bulge_b);
+        if self.key_a < self.key_b { [a, b] } else { [b, a] }
+    }
+}
+
+/// How many pixels of a row are worked out at a time: plain loops over so many numbers become vector instructions.
+const LANES: usize = 8;
+
 /// Light from the upper left, a little before the figure; x right, y down, z to the viewer. Unit length.
 const LIGHT: [f32; 3] = [-0.40, -0.62, 0.675];
 
-/// Brightness of a surface with normal (`x`, `y`, `z`), as a factor on its colour: about 0.42 in the shade, 1.08 in
-/// full light.
-#[inline]
-fn shade(x: f32, y: f32, z: f32) -> f32 {
-    let toward = x * LIGHT[0] + y * LIGHT[1] + z * LIGHT[2];
-    // Wrapped diffuse light keeps the shaded side legible; the z term darkens every outline a little, which is what
-    // separates two crossing limbs of one colour.
-    0.42 + 0.46 * (0.5 + 0.5 * toward) + 0.20 * z
+/// A limb's surface, ready for its pixels.
+struct Surface {
+    frame: ConeFrame,
+    key: [f32; 2],
+    bulge: [f32; 2],
+    /// The light along the limb's axis, across it and towards the viewer.
+    light: [f32; 3],
 }
 
-#[inline]
-fn lit(color: Color, factor: f32) -> [u8; 3] {
-    let scale = |channel: u8| (f32::from(channel) * factor + 0.5).min(255.0) as u8;
-    [scale(color.r), scale(color.g), scale(color.b)]
+/// What [`LANES`] neighbouring pixels see of a limb.
+struct Lanes {
+    /// Covered share, 0..=255.
+    alpha: [u32; LANES],
+    /// Brightness, an index into [`Tones`].
+    tone: [u32; LANES],
+    /// Depth of the surface.
+    key: [f32; LANES],
+    /// Depth behind which something counts as well behind the limb.
+    behind: [f32; LANES],
+    /// To the outline, pixels; negative inside.
+    distance: [f32; LANES],
+}
+
+impl Surface {
+    fn new(cone: &SolidCone, frame: ConeFrame) -> Self {
+        let axis = frame.axis();
+        let along = LIGHT[0] * axis.x + LIGHT[1] * axis.y;
+        let across = LIGHT[1] * axis.x - LIGHT[0] * axis.y;
+        Self {
+            frame,
+            key: [cone.key_a, cone.key_b - cone.key_a],
+            bulge: [cone.bulge_a, cone.bulge_b - cone.bulge_a],
+            light: [along, across, LIGHT[2]],
+        }
+    }
+
+    #[inline]
+    fn lanes(&self, start: Vec2) -> Lanes {
+        let mut lanes = Lanes {
+            alpha: [0; LANES],
+            tone: [0; LANES],
+            key: [0.0; LANES],
+            behind: [0.0; LANES],
+            distance: [0.0; LANES],
+        };
+        for lane in 0..LANES {
+            let sample = self.frame.sample(Vec2::new(start.x + lane as f32, start.y));
+            // On the rim a pixel's middle may lie outside: its normal is then held to unit length.
+            let inverse = 1.0 / sample.radius.max(sample.out_length).max(0.25);
+            let (along, across) = (sample.out.x * inverse, sample.out.y * inverse);
+            let z = (1.0 - along * along - across * across).max(0.0).sqrt();
+            let toward = along * self.light[0] + across * self.light[1] + z * self.light[2];
+            let axis_key = self.key[0] + self.key[1] * sample.t;
+            let bulge = self.bulge[0] + self.bulge[1] * sample.t;
+            lanes.distance[lane] = sample.distance;
+            lanes.key[lane] = axis_key + bulge * z;
+            lanes.behind[lane] = axis_key - 2.0 * bulge;
+            lanes.alpha[lane] = to_byte((0.5 - sample.distance).clamp(0.0, 1.0) * 255.0);
+            // Wrapped diffuse light keeps the shaded side legible; the z term darkens every outline a little, which
+            // is what separates two crossing limbs of one colour.
+            let factor = 0.26 + 0.62 * (0.5 + 0.5 * toward) + 0.22 * z;
+            lanes.tone[lane] = to_byte((factor * TONES_AT_ONE).clamp(0.0, 255.0));
+        }
+        lanes
+    }
+}
+
+/// The nearest whole number to `value` in 0..=255. Adding 2²³ leaves no bits for a fraction, so the whole number
+/// stands in the low bits; unlike `as` this works on several numbers at a time.
+#[inline(always)]
+pub(super) const fn to_byte(value: f32) -> u32 {
+    (value + 8_388_608.0).to_bits() & 0xFF
+}
+
+/// The tone that stands for a brightness of 1.
+const TONES_AT_ONE: f32 = 225.0;
+
+/// A colour at 256 brightnesses.
+struct Tones([[u8; 3]; 256]);
+
+impl Tones {
+    fn new(color: Color) -> Self {
+        let scale = |channel: u8, tone: usize| {
+            (f32::from(channel) * tone as f32 * (1.0 / TONES_AT_ONE) + 0.5).min(255.0) as u8
+        };
+        Self(std::array::from_fn(|tone| [scale(color.r, tone), scale(color.g, tone), scale(color.b, tone)]))
+    }
+}
+
+/// The flat band across a limb near its end: its place leaves room for the round end and for the next limb.
+struct Mark {
+    at: f32,
+    half: f32,
+    tones: Tones,
+}
+
+impl Mark {
+    fn new(cone: &SolidCone, style: &SolidStyle) -> Option<Self> {
+        let length = cone.shape.a.distance(cone.shape.b);
+        let end_radius = cone.shape.radius_b;
+        let color = style.mark.filter(|_| length > 5.0 * end_radius + 4.0)?;
+        let half = (0.30 * end_radius).max(0.75);
+        Some(Self { at: length - 2.2 * end_radius.max(1.0) - half, half, tones: Tones::new(color) })
+    }
 }
 
 impl Canvas {
@@ -170,69 +279,63 @@ impl Canvas {
     /// order, but outlines are blended with what is there already.
     pub(super) fn solid(&mut self, cone: &SolidCone, style: &SolidStyle) {
         if cone.shape.is_swallowed() && cone.shape.a != cone.shape.b {
-            // Seen along its axis: two balls, the far one first.
-            let ball = |at: Vec2, radius: f32, key: f32, bulge: f32| SolidCone {
-                shape: RoundCone { a: at, b: at, radius_a: radius, radius_b: radius },
-                key_a: key,
-                key_b: key,
-                bulge_a: bulge,
-                bulge_b: bulge,
-            };
-            let a = ball(cone.shape.a, cone.shape.radius_a, cone.key_a, cone.bulge_a);
-            let b = ball(cone.shape.b, cone.shape.radius_b, cone.key_b, cone.bulge_b);
             let plain = SolidStyle { mark: None, ..*style };
-            for ball in if cone.key_a < cone.key_b { [a, b] } else { [b, a] } {
+            for ball in cone.balls_from_back() {
                 self.solid(&ball, &plain);
             }
             return;
         }
         let (width, height) = (self.width(), self.height());
         let (pixels, depth) = (self.image.pixels_mut(), &mut self.depth[..]);
-        let axis = cone.shape.frame().axis();
-        let length = cone.shape.a.distance(cone.shape.b);
-        let (key_step, bulge_step) = (cone.key_b - cone.key_a, cone.bulge_b - cone.bulge_a);
-        // The mark is a flat band across the limb: its place leaves room for the round end and for the next limb.
-        let mark = style.mark.filter(|_| length > 5.0 * cone.shape.radius_b + 4.0);
-        let mark_half = (0.30 * cone.shape.radius_b).max(0.75);
-        let mark_at = length - 2.2 * cone.shape.radius_b.max(1.0) - mark_half;
-        cone.shape.scan(width, height, style.halo.max(0.5), |index, sample| {
-            let key_axis = cone.key_a + key_step * sample.t;
-            let bulge = cone.bulge_a + bulge_step * sample.t;
-            let coverage = sample.coverage();
-            if coverage <= 0.0 {
-                // Beside the limb: darken what stands well behind it.
-                if depth[index] != FAR && depth[index] < key_axis - 2.0 * bulge {
-                    let near = 1.0 - (sample.distance - 0.5) / (style.halo - 0.5);
-                    mix_pixel(&mut pixels[index], [0, 0, 0], (near * 110.0) as u32);
-                }
-                return;
-            }
-            let (x, y, z) = normal(sample, axis);
-            let key = key_axis + bulge * z;
-            if key <= depth[index] {
-                return;
-            }
-            let factor = shade(x, y, z);
-            let mut rgb = lit(style.color, factor);
-            if let Some(mark_color) = mark {
-                let inside = (mark_half + 0.5 - (sample.along - mark_at).abs()).clamp(0.0, 1.0);
-                if inside > 0.0 {
-                    rgb = mix_rgb(rgb, lit(mark_color, factor), inside);
-                }
-            }
-            if let Some((ring, color)) = style.ring {
-                let inside = (sample.distance + ring + 0.5).clamp(0.0, 1.0);
-                if inside > 0.0 {
-                    rgb = mix_rgb(rgb, [color.r, color.g, color.b], inside);
-                }
-            }
-            if coverage >= 1.0 {
-                pixels[index] = [rgb[0], rgb[1], rgb[2], 255];
-                depth[index] = key;
-            } else {
-                mix_pixel(&mut pixels[index], rgb, (coverage * 255.0 + 0.5) as u32);
-                if coverage >= 0.5 {
-                    depth[index] = key;
+        let frame = cone.shape.frame();
+        let surface = Surface::new(cone, frame);
+        let tones = Tones::new(style.color);
+        let mark = Mark::new(cone, style);
+        let halo = style.halo.max(0.5);
+        cone.shape.rows(&frame, width, height, halo, |row, columns, first| {
+            let span = row * width + columns.start..row * width + columns.end;
+            let chunks = pixels[span.clone()].chunks_mut(LANES).zip(depth[span].chunks_mut(LANES));
+            for (chunk, (pixels, depths)) in chunks.enumerate() {
+                let start = Vec2::new(first.x + (chunk * LANES) as f32, first.y);
+                let lanes = surface.lanes(start);
+                for (lane, (pixel, standing)) in pixels.iter_mut().zip(depths).enumerate() {
+                    let alpha = lanes.alpha[lane];
+                    if alpha == 0 {
+                        // Beside the limb: darken what stands well behind it.
+                        let near = halo - lanes.distance[lane];
+                        if near > 0.0 && *standing != FAR && *standing < lanes.behind[lane] {
+                            mix_pixel(pixel, [0, 0, 0], (near / halo * 110.0) as u32);
+                        }
+                        continue;
+                    }
+                    let key = lanes.key[lane];
+                    if key <= *standing {
+                        continue;
+                    }
+                    let tone = lanes.tone[lane] as usize;
+                    let mut rgb = tones.0[tone.min(255)];
+                    if let Some(mark) = &mark {
+                        let along = frame.along(start + Vec2::new(lane as f32, 0.0));
+                        let inside = (mark.half + 0.5 - (along - mark.at).abs()).clamp(0.0, 1.0);
+                        if inside > 0.0 {
+                            rgb = mix_rgb(rgb, mark.tones.0[tone.min(255)], inside);
+                        }
+                    }
+                    if let Some((ring, color)) = style.ring {
+                        let inside = (lanes.distance[lane] + ring + 0.5).clamp(0.0, 1.0);
+                        if inside > 0.0 {
+                            rgb = mix_rgb(rgb, [color.r, color.g, color.b], inside);
+                        }
+                    }
+                    if alpha == 255 {
+                        *pixel = [rgb[0], rgb[1], rgb[2], 255];
+                        *standing = key;
+                    } else {
+                        mix_pixel(pixel, rgb, alpha);
+                        if alpha >= 128 {
+                            *standing = key;
+                        }
+                    }
                 }
             }
         });
@@ -253,15 +356,11 @@ impl Canvas {
         let thin = stroke.width.clamp(0.0, 1.0);
         let radius = stroke.width.max(1.0) / 2.0;
         let length = a.pixel.distance(b.pixel);
-        let shape = RoundCone { a: a.pixel, b: b.pixel, radius_a: radius, radius_b: radius };
-        shape.scan(width, height, 0.5, |index, sample| {
-            let hidden = hidden_share(stroke.hidden, a.key + (b.key - a.key) * sample.t, depth[index]);
-            if hidden == 0.0 {
-                return;
-            }
-            let dashed = stroke.dash.map_or(1.0, |dash| dash_share(dash, dashed_before + length * sample.t));
-            let share = thin * hidden * dashed * ink(sample.t) * sample.coverage();
-            blend_pixel(&mut pixels[index], stroke.color, share);
+        let share = |t| thin * ink(t);
+        scan_line([a.pixel, b.pixel], radius, [width, height], share, |index, t, share| {
+            let hidden = hidden_share(stroke.hidden, a.key + (b.key - a.key) * t, depth[index]);
+            let dashed = stroke.dash.map_or(1.0, |dash| dash_share(dash, dashed_before + length * t));
+            blend_pixel(&mut pixels[index], stroke.color, share * hidden * dashed);
         });
     }
 
@@ -312,9 +411,13 @@ impl Canvas {
         let (width, height) = (self.width(), self.height());
         let pixels = self.image.pixels_mut();
         let shape = RoundCone { a: at, b: at, radius_a: radius, radius_b: radius };
-        shape.scan(width, height, stroke_width, |index, sample| {
-            let coverage = (stroke_width / 2.0 + 0.5 - sample.distance.abs()).clamp(0.0, 1.0);
-            blend_pixel(&mut pixels[index], color, coverage);
+        let frame = shape.frame();
+        shape.rows(&frame, width, height, stroke_width, |row, columns, first| {
+            for (i, column) in columns.enumerate() {
+                let sample = frame.sample(first + Vec2::new(i as f32, 0.0));
+                let coverage = (stroke_width / 2.0 + 0.5 - sample.distance.abs()).clamp(0.0, 1.0);
+                blend_pixel(&mut pixels[row * width + column], color, coverage);
+            }
         });
     }
 
@@ -346,18 +449,6 @@ impl Canvas {
             blend_pixel(&mut pixels[index], color, coverage * hidden_share(hidden, key, depth[index]));
         });
     }
-}
-
-/// The surface normal of a limb at a sample: x right, y down, z to the viewer.
-#[inline]
-fn normal(sample: &Sample, axis: Vec2) -> (f32, f32, f32) {
-    let inverse = 1.0 / sample.radius.max(0.25);
-    let (along, across) = (sample.out.x * inverse, sample.out.y * inverse);
-    let flat = along * along + across * across;
-    let z = (1.0 - flat).max(0.0).sqrt();
-    // A pixel on the rim lies half outside: hold its normal to unit length.
-    let hold = if flat > 1.0 { flat.sqrt().recip() } else { 1.0 };
-    (hold * (along * axis.x - across * axis.y), hold * (along * axis.y + across * axis.x), z)
 }
 
 #[inline]

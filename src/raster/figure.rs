@@ -6,6 +6,7 @@ use crate::raster::camera::{Bounds, View};
 use crate::raster::canvas::{Canvas, Dash, Hidden, SolidCone, SolidStyle, Spot, Stroke};
 use crate::raster::palette::{Color, Theme};
 use crate::raster::shape::RoundCone;
+use crate::skeleton::{Skeleton, WorldJoint};
 
 /// One limb of a pose.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -18,28 +19,34 @@ pub struct FigureLimb {
     pub joint: usize,
 }
 
-/// The limbs of a pose: from each joint to each of its children and tips; a small ball for a joint with neither.
+/// The limbs of a posed skeleton: from each joint to each of its children and tips, and a small ball for a joint with
+/// neither.
 ///
-/// `parents` and `positions` (world) have one entry for each joint; `tips` are the ends of last limbs (a BVH file's
-/// End Sites) with the joint they hang on. A parent that is no joint of the list counts as none.
-pub fn limbs_of_pose(
-    parents: &[Option<usize>],
-    positions: &[DVec3],
-    tips: &[(usize, DVec3)],
-) -> Vec<FigureLimb> {
-    let mut has_limb = vec![false; positions.len()];
-    let mut limbs = Vec::with_capacity(positions.len() + tips.len());
-    let to_children = parents.iter().zip(positions).filter_map(|(&parent, &to)| Some((parent?, to)));
-    for (joint, to) in to_children.chain(tips.iter().copied()) {
-        if let Some(&from) = positions.get(joint) {
+/// `world` has one entry for each joint, carriers included, as [`Skeleton::world`] gives it. Carriers are not drawn:
+/// limbs run from joint to joint across them.
+pub fn limbs_of_skeleton(skeleton: &Skeleton, world: &[WorldJoint]) -> Vec<FigureLimb> {
+    let mut has_limb = vec![false; skeleton.len()];
+    let mut limbs = Vec::with_capacity(skeleton.len() * 2);
+    let place = |joint: usize| world.get(joint).map(WorldJoint::position);
+    for joint in skeleton.listed() {
+        let Some(at) = place(joint) else { continue };
+        if let Some(parent) = skeleton.parent_joint(joint)
+            && let Some(from) = place(parent)
+        {
+            has_limb[parent] = true;
+            limbs.push(FigureLimb { from, to: at, joint: parent });
+        }
+        for &tip in &skeleton.joints()[joint].tips {
             has_limb[joint] = true;
-            limbs.push(FigureLimb { from, to, joint });
+            limbs.push(FigureLimb {
+                from: at,
+                to: world[joint].scene_from_joint.transform_point3(tip),
+                joint,
+            });
         }
     }
-    for (joint, &at) in positions.iter().enumerate() {
-        if !has_limb[joint] {
-            limbs.push(FigureLimb { from: at, to: at, joint });
-        }
+    for joint in skeleton.listed().filter(|&joint| !has_limb[joint]) {
+        limbs.extend(place(joint).map(|at| FigureLimb { from: at, to: at, joint }));
     }
     limbs
 }
@@ -67,12 +74,19 @@ impl Girth {
         Self { long_limb: lengths.get(place).copied().unwrap_or(1.0) }
     }
 
+    /// From the rest pose, which no clip changes.
+    pub fn of_skeleton(skeleton: &Skeleton) -> Self {
+        Self::of_limbs(&limbs_of_skeleton(skeleton, &skeleton.world(&skeleton.rest_pose())))
+    }
+
     /// Radius at the joint and at the end of a limb of this length.
     fn radii(self, length: f64) -> [f64; 2] {
         if length <= 1e-9 * self.long_limb {
             return [0.055 * self.long_limb; 2];
         }
-        let at_joint = (0.13 * length).clamp(0.035 * self.long_limb, 0.15 * self.long_limb);
+        // Between "all alike" and "as thick as long": short spine joints keep a body, fingers stay fingers.
+        let at_joint = 0.115 * (length * self.long_limb).sqrt();
+        let at_joint = at_joint.clamp(0.025 * self.long_limb, 0.15 * self.long_limb);
         [at_joint, 0.62 * at_joint]
     }
 }
@@ -235,23 +249,54 @@ fn draw_ghost(canvas: &mut Canvas, view: &View, figure: &Figure, theme: &Theme, 
 mod tests {
     use super::*;
     use crate::raster::camera::Camera;
+    use crate::skeleton::{Joint, JointKind, Transform};
+
+    fn joint(parent: Option<usize>, offset: DVec3, tips: &[DVec3]) -> Joint {
+        Joint {
+            name: String::new(),
+            number: 0,
+            parent,
+            rest: Transform::from_translation(offset),
+            kind: JointKind::Joint,
+            tips: tips.to_vec(),
+        }
+    }
+
+    fn limbs_at_rest(joints: Vec<Joint>) -> Vec<FigureLimb> {
+        let skeleton = Skeleton::new(joints).unwrap();
+        limbs_of_skeleton(&skeleton, &skeleton.world(&skeleton.rest_pose()))
+    }
 
     fn arm(scale: f64) -> Figure {
-        let positions = [DVec3::ZERO, DVec3::X, DVec3::new(1.6, 0.0, 0.0)].map(|at| at * scale);
-        let parents = [None, Some(0), Some(1)];
-        Figure::new(
-            limbs_of_pose(&parents, &positions, &[(2, DVec3::new(1.8, 0.0, 0.0) * scale)]),
-            FigureStyle::After,
-        )
+        let limbs = limbs_at_rest(vec![
+            joint(None, DVec3::ZERO, &[]),
+            joint(Some(0), DVec3::X * scale, &[]),
+            joint(Some(1), DVec3::X * 0.6 * scale, &[DVec3::X * 0.2 * scale]),
+        ]);
+        Figure::new(limbs, FigureStyle::After)
     }
 
     #[test]
-    fn limbs_reach_to_children_and_tips_and_lone_joints_get_balls() {
-        let positions = [DVec3::ZERO, DVec3::Y, DVec3::X, DVec3::Z];
-        let limbs = limbs_of_pose(&[None, Some(0), Some(0), None], &positions, &[(1, DVec3::ONE)]);
-        let found: Vec<(usize, DVec3)> = limbs.iter().map(|limb| (limb.joint, limb.to)).collect();
-        assert_eq!(found, [(0, DVec3::Y), (0, DVec3::X), (1, DVec3::ONE), (2, DVec3::X), (3, DVec3::Z)]);
-        assert_eq!(limbs_of_pose(&[Some(7)], &[DVec3::ZERO], &[(9, DVec3::X)]).len(), 1);
+    fn limbs_reach_to_children_and_tips_over_carriers_and_lone_joints_get_balls() {
+        let carrier = Joint { kind: JointKind::Carrier, ..joint(Some(0), DVec3::Y, &[]) };
+        let limbs = limbs_at_rest(vec![
+            joint(None, DVec3::ZERO, &[]),
+            carrier,
+            joint(Some(1), DVec3::X, &[DVec3::Z]),
+            joint(Some(0), DVec3::X, &[]),
+            joint(None, DVec3::Z, &[]),
+        ]);
+        let found: Vec<(usize, DVec3, DVec3)> =
+            limbs.iter().map(|limb| (limb.joint, limb.from, limb.to)).collect();
+        let far = DVec3::new(1.0, 1.0, 0.0);
+        let expected = [
+            (0, DVec3::ZERO, far),
+            (2, far, DVec3::ONE),
+            (0, DVec3::ZERO, DVec3::X),
+            (3, DVec3::X, DVec3::X),
+            (4, DVec3::Z, DVec3::Z),
+        ];
+        assert_eq!(found, expected);
     }
 
     #[test]

@@ -1,9 +1,9 @@
 //! The floor: a neutral grid that fades away, one arrow for the heading, and soft shadows under the limbs.
 
-use glam::DVec3;
+use glam::{DVec3, Vec2};
 
 use crate::raster::camera::{Bounds, Lens, View};
-use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke};
+use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke, to_byte};
 use crate::raster::figure::{Figure, solid_cone};
 use crate::raster::image::mix_pixel;
 use crate::raster::palette::Theme;
@@ -98,14 +98,14 @@ fn grid_line(canvas: &mut Canvas, view: &View, floor: &Floor, ends: [DVec3; 2], 
     });
 }
 
-/// A flat arrow on the floor, one step long, in front of the figure.
+/// A flat arrow on the floor, well under one step long, in front of the figure.
 fn draw_arrow(canvas: &mut Canvas, view: &View, floor: &Floor, theme: &Theme) {
     let Some(ahead) = floor.heading.with_y(0.0).try_normalize() else { return };
     let aside = DVec3::Y.cross(ahead);
     let outline: Vec<DVec3> =
         [(0.0, 0.05), (0.62, 0.05), (0.62, 0.17), (1.0, 0.0), (0.62, -0.17), (0.62, -0.05), (0.0, -0.05)]
             .into_iter()
-            .map(|(x, y)| floor.center + (ahead * (x + 0.5) + aside * y) * floor.step)
+            .map(|(x, y)| floor.center + (ahead * (x * 0.6 + 0.55) + aside * y * 0.6) * floor.step)
             .collect();
     canvas.polygon(view, &outline, theme.axis.with_alpha(0.8), Hidden::Shown);
 }
@@ -116,7 +116,7 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
         return;
     }
     let (width, height) = (canvas.width(), canvas.height());
-    let strength = if theme.is_dark() { 120.0 } else { 70.0 };
+    let strength = if theme.is_dark() { 190.0 } else { 95.0 };
     let mut mask = std::mem::take(canvas.shadow_mask());
     let mut touched = (height, 0);
     for figure in figures {
@@ -131,17 +131,22 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
             flat.from.y = floor.center.y;
             flat.to.y = floor.center.y;
             let Some(cone) = solid_cone(view, &flat, figure.girth, 1.0, 0.5) else { continue };
-            let darkness = strength / (1.0 + 18.0 * height_share.max(0.0)) as f32;
-            let blur = 1.0 + 3.0 * height_share.max(0.0) as f32;
+            let darkness = strength / (1.0 + 9.0 * height_share.max(0.0)) as f32;
+            let blur = 1.2 + 4.0 * height_share.max(0.0) as f32;
             let soft = (cone.shape.radius_a.max(cone.shape.radius_b) * blur).max(1.0);
             if mask.is_empty() {
                 mask.resize(width * height, 0);
             }
-            cone.shape.scan(width, height, soft, |index, sample| {
-                let inside = (0.5 - 0.5 * sample.distance / soft).clamp(0.0, 1.0);
-                let dark = (darkness * inside * inside * (3.0 - 2.0 * inside)) as u8;
-                mask[index] = mask[index].max(dark);
-                touched = (touched.0.min(index / width), touched.1.max(index / width + 1));
+            let frame = cone.shape.frame();
+            let inverse = 0.5 / soft;
+            cone.shape.rows(&frame, width, height, soft, |row, columns, first| {
+                touched = (touched.0.min(row), touched.1.max(row + 1));
+                let span = row * width + columns.start..row * width + columns.end;
+                for (i, dark) in mask[span].iter_mut().enumerate() {
+                    let distance = frame.sample(Vec2::new(first.x + i as f32, first.y)).distance;
+                    let inside = (0.5 - distance * inverse).clamp(0.0, 1.0);
+                    *dark = (*dark).max(to_byte(darkness * inside * inside * (3.0 - 2.0 * inside)) as u8);
+                }
             });
         }
     }

@@ -18,7 +18,7 @@ mod text;
 pub use camera::{Bounds, Camera, Lens, Projection, Ray, StraightView, View};
 pub use canvas::{Canvas, Dash, Hidden, Stroke};
 pub use disc::{PlaneDisc, ReachCone};
-pub use figure::{Figure, FigureLimb, FigureStyle, Girth, limbs_of_pose};
+pub use figure::{Figure, FigureLimb, FigureStyle, Girth, limbs_of_skeleton};
 pub use floor::Floor;
 pub use image::{Image, ImageError};
 pub use palette::{Color, Theme, cividis};

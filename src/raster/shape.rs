@@ -22,23 +22,15 @@ pub(super) struct Sample {
     pub(super) distance: f32,
     /// The place on the axis whose circle reaches out to this pixel: 0 at `a`, 1 at `b`.
     pub(super) t: f32,
-    /// Along the axis from `a`, pixels; not held at the ends.
-    pub(super) along: f32,
     /// From that place to the pixel, pixels; along the axis and across it.
     pub(super) out: Vec2,
+    /// Length of `out`.
+    pub(super) out_length: f32,
     /// Radius at that place, pixels.
     pub(super) radius: f32,
 }
 
-impl Sample {
-    /// The covered share of the pixel, 0..=1: exact for a straight edge along the grid, and close for any other.
-    #[inline]
-    pub(super) fn coverage(&self) -> f32 {
-        (0.5 - self.distance).clamp(0.0, 1.0)
-    }
-}
-
-/// What [`RoundCone::sample`] needs for every pixel, worked out once.
+/// A [`RoundCone`] with what every pixel needs worked out once.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct ConeFrame {
     origin: Vec2,
@@ -89,37 +81,42 @@ impl RoundCone {
         }
     }
 
-    /// Visits every pixel within `margin` pixels of the outline, row by row, in a picture of `width × height`.
+    /// Visits the rows that come within `margin` pixels of the outline, in a picture of `width × height`: the row, its
+    /// columns that may be near enough, and the middle of the first of them, counted from the frame's origin.
     #[inline]
-    pub(super) fn scan(
+    pub(super) fn rows(
         &self,
+        frame: &ConeFrame,
         width: usize,
         height: usize,
         margin: f32,
-        mut visit: impl FnMut(usize, &Sample),
+        mut visit: impl FnMut(usize, Range<usize>, Vec2),
     ) {
         if !(self.a.is_finite() && self.b.is_finite()) {
             return;
         }
-        let frame = self.frame();
         let reach = frame.radius_a.max(frame.radius_b) + margin;
         let end = frame.origin + frame.axis * frame.length;
         let low = frame.origin.min(end) - reach;
         let high = frame.origin.max(end) + reach;
         for row in pixel_span(low.y, high.y, height) {
             let y = row as f32 + 0.5 - frame.origin.y;
-            // The row's part inside the band along the axis: |cross| <= reach.
+            // The row's part inside the band along the axis, |across| <= reach, and between the ends' outer squares.
             let (mut left, mut right) = (low.x, high.x);
             if frame.axis.y.abs() > 1e-3 {
                 let middle = frame.origin.x + y * frame.axis.x / frame.axis.y;
                 let half = reach / frame.axis.y.abs();
                 (left, right) = (left.max(middle - half), right.min(middle + half));
             }
-            for column in pixel_span(left, right, width) {
-                let sample = frame.sample(Vec2::new(column as f32 + 0.5 - frame.origin.x, y));
-                if sample.distance < margin {
-                    visit(row * width + column, &sample);
-                }
+            if frame.axis.x.abs() > 1e-3 {
+                let at = |along: f32| frame.origin.x + (along - y * frame.axis.y) / frame.axis.x;
+                let (start, stop) = (at(-reach), at(frame.length + reach));
+                (left, right) = (left.max(start.min(stop)), right.min(start.max(stop)));
+            }
+            let columns = pixel_span(left, right, width);
+            if !columns.is_empty() {
+                let first = Vec2::new(columns.start as f32 + 0.5 - frame.origin.x, y);
+                visit(row, columns, first);
             }
         }
     }
@@ -136,24 +133,75 @@ impl ConeFrame {
         self.axis
     }
 
-    /// The distance and place for a pixel at `from_origin` (pixels from end `a`).
+    /// The distance and place for a pixel at `from_origin` (pixels from the frame's origin).
     ///
-    /// The outline is the two circles and their outer tangents, so the nearest outline point of a pixel lies on a
-    /// circle where the pixel is behind the tangent's foot, and on the tangent between.
-    #[inline]
+    /// The outline is the two circles and their outer tangents. Between the tangents' feet the line from a pixel square
+    /// to the tangent meets the axis at `t`, and the circle there touches the tangent on that very line; beyond them
+    /// the nearest circle is an end's. So one formula serves both, without a branch.
+    #[inline(always)]
     pub(super) fn sample(&self, from_origin: Vec2) -> Sample {
-        let along = from_origin.dot(self.axis);
-        let across = self.axis.perp_dot(from_origin);
-        let beside = across.abs();
-        let t = ((along * self.taper_cos - beside * self.taper_sin) * self.inverse_edge).clamp(0.0, 1.0);
+        let along = from_origin.x * self.axis.x + from_origin.y * self.axis.y;
+        let across = self.axis.x * from_origin.y - self.axis.y * from_origin.x;
+        let t = (along * self.taper_cos - across.abs() * self.taper_sin) * self.inverse_edge;
+        let t = t.clamp(0.0, 1.0);
         let radius = self.radius_a + (self.radius_b - self.radius_a) * t;
         let out = Vec2::new(along - t * self.length, across);
-        let distance = if t > 0.0 && t < 1.0 {
-            along * self.taper_sin + beside * self.taper_cos - self.radius_a
-        } else {
-            out.length() - radius
-        };
-        Sample { distance, t, along, out, radius }
+        let out_length = (out.x * out.x + out.y * out.y).sqrt();
+        Sample { distance: out_length - radius, t, out, out_length, radius }
+    }
+
+    /// How far along the axis a pixel is, pixels from the frame's origin.
+    pub(super) fn along(&self, from_origin: Vec2) -> f32 {
+        from_origin.dot(self.axis)
+    }
+}
+
+/// Visits the pixels of a line of equal width with round ends: each step along its longer direction asks `share` for
+/// the opacity at `t` of the way (0..=1), then `visit` gets index, `t` and covered share of each pixel of the step.
+#[inline]
+pub(super) fn scan_line(
+    [a, b]: [Vec2; 2],
+    radius: f32,
+    [width, height]: [usize; 2],
+    share: impl Fn(f32) -> f32,
+    mut visit: impl FnMut(usize, f32, f32),
+) {
+    if !(a.is_finite() && b.is_finite()) {
+        return;
+    }
+    let reach = radius + 0.5;
+    let is_steep = (b.y - a.y).abs() > (b.x - a.x).abs();
+    // Work in a picture turned so that the line runs along x.
+    let turned = |p: Vec2| if is_steep { Vec2::new(p.y, p.x) } else { p };
+    let (a, b) = (turned(a), turned(b));
+    let (columns, rows) = if is_steep { (height, width) } else { (width, height) };
+    let (row_stride, column_stride) = if is_steep { (1, width) } else { (width, 1) };
+    let length = a.distance(b);
+    let axis = if length > 0.0 { (b - a) / length } else { Vec2::X };
+    let half = reach / axis.x.abs();
+    let (low, high) = (a.min(b), a.max(b));
+    for column in pixel_span(low.x - reach, high.x + reach, columns) {
+        let from_a = column as f32 + 0.5 - a.x;
+        let middle = a.y + from_a * axis.y / axis.x;
+        let at_middle = if length > 0.0 { from_a / (axis.x * length) } else { 0.0 };
+        let ink = share(at_middle.clamp(0.0, 1.0));
+        if ink <= 0.0 {
+            continue;
+        }
+        let bottom = (middle - half).max(low.y - reach);
+        let top = (middle + half).min(high.y + reach);
+        for row in pixel_span(bottom, top, rows) {
+            let out = Vec2::new(from_a, row as f32 + 0.5 - a.y);
+            let along = out.dot(axis);
+            let beyond = along - along.clamp(0.0, length);
+            let across = axis.perp_dot(out);
+            let distance = if beyond == 0.0 { across.abs() } else { across.hypot(beyond) };
+            let coverage = (reach - distance).min(1.0);
+            if coverage > 0.0 {
+                let t = if length > 0.0 { (along / length).clamp(0.0, 1.0) } else { 0.0 };
+                visit(row * row_stride + column * column_stride, t, coverage * ink);
+            }
+        }
     }
 }
 
@@ -255,9 +303,18 @@ fn add_length(cells: &mut [f32], start: f32, end: f32) {
 mod tests {
     use super::*;
 
+    fn each_sample(shape: &RoundCone, margin: f32, mut visit: impl FnMut(usize, Sample)) {
+        let frame = shape.frame();
+        shape.rows(&frame, 100, 100, margin, |row, columns, first| {
+            for (i, column) in columns.enumerate() {
+                visit(row * 100 + column, frame.sample(first + Vec2::new(i as f32, 0.0)));
+            }
+        });
+    }
+
     fn area(shape: &RoundCone) -> f32 {
         let mut area = 0.0;
-        shape.scan(100, 100, 1.0, |_, sample| area += sample.coverage());
+        each_sample(shape, 1.0, |_, sample| area += (0.5 - sample.distance).clamp(0.0, 1.0));
         area
     }
 
@@ -290,11 +347,38 @@ mod tests {
         let shape = cone([20.0, 70.0], [81.0, 33.0], 9.0, 3.0);
         let frame = shape.frame();
         let mut visited = vec![false; 100 * 100];
-        shape.scan(100, 100, 0.5, |index, _| visited[index] = true);
+        each_sample(&shape, 0.5, |index, _| visited[index] = true);
+        let spared = visited.iter().filter(|was_visited| !**was_visited).count();
+        assert!(spared > 8000, "{spared}");
         for (index, was_visited) in visited.into_iter().enumerate() {
             let middle = Vec2::new((index % 100) as f32 + 0.5, (index / 100) as f32 + 0.5);
             let distance = frame.sample(middle - shape.a).distance;
-            assert_eq!(was_visited, distance < 0.5, "{middle}: {distance}");
+            assert!(was_visited || distance >= 0.5, "{middle}: {distance}");
+        }
+    }
+
+    #[test]
+    fn a_line_is_a_round_cone_of_equal_radii() {
+        for (a, b) in
+            [([10.2, 20.0], [80.0, 31.5]), ([30.0, 90.0], [41.0, 5.5]), ([50.0, 50.0], [50.0, 50.0])]
+        {
+            for radius in [0.5, 3.0] {
+                let shape = cone(a, b, radius, radius);
+                let mut expected = vec![0.0; 100 * 100];
+                each_sample(&shape, 1.0, |index, sample| {
+                    expected[index] = (0.5 - sample.distance).clamp(0.0, 1.0)
+                });
+                let mut found = vec![0.0; 100 * 100];
+                scan_line(
+                    [shape.a, shape.b],
+                    radius,
+                    [100, 100],
+                    |_| 1.0,
+                    |index, _, share| found[index] = share,
+                );
+                let worst = expected.iter().zip(&found).map(|(e, f)| (e - f).abs()).fold(0.0, f32::max);
+                assert!(worst < 1e-3, "{a:?} {b:?} {radius}: {worst}");
+            }
         }
     }
 
@@ -302,7 +386,7 @@ mod tests {
     fn far_and_broken_shapes_touch_nothing() {
         let touched = |shape: RoundCone| {
             let mut count = 0;
-            shape.scan(10, 10, 1.0, |_, _| count += 1);
+            shape.rows(&shape.frame(), 10, 10, 1.0, |_, columns, _| count += columns.len());
             count
         };
         assert_eq!(touched(cone([-50.0, -9e9], [-20.0, -9e9], 3.0, 3.0)), 0);

@@ -1,0 +1,61 @@
+//! How long is one frame of the skeleton view? `cargo bench --no-default-features --bench raster` prints the median
+//! of many; with `--test` each picture is drawn once, so that the bench keeps working.
+#![expect(clippy::print_stdout, reason = "the numbers are what a bench is for")]
+
+use std::hint::black_box;
+use std::time::Instant;
+
+use glam::DVec3;
+use turnwright::raster::{Bounds, Camera, Canvas, Figure, FigureLimb, FigureStyle, Floor, SceneView, Theme};
+use turnwright::raster::{TipPath, render_into};
+
+/// A bush of 64 limbs that fills the picture and crosses itself.
+fn limbs() -> Vec<FigureLimb> {
+    (0..64_usize)
+        .map(|i| {
+            let at = |k: usize| {
+                let turn = k as f64 * 2.4;
+                DVec3::new(turn.cos() * 0.8, 0.1 + k as f64 * 0.028, turn.sin() * 0.8)
+            };
+            FigureLimb { from: at(i), to: at(i).lerp(at(i + 1), 0.35), joint: i }
+        })
+        .collect()
+}
+
+fn scene(width: usize, height: usize) -> SceneView {
+    let bounds = Bounds { min: DVec3::new(-0.8, 0.0, -0.8), max: DVec3::new(0.8, 1.9, 0.8) };
+    let mut camera = Camera::default();
+    camera.fit(&bounds, width, height, 0.05);
+    let mut scene = SceneView::new(width, height, camera, Theme::DARK);
+    scene.figures.push(Figure::new(limbs(), FigureStyle::After));
+    scene
+}
+
+fn main() {
+    let runs = if std::env::args().any(|argument| argument == "--test") { 1 } else { 300 };
+    for (width, height) in [(900, 600), (1920, 1080)] {
+        let bare = scene(width, height);
+        measure(&format!("64 limbs, {width} × {height}"), &bare, runs);
+        let mut full = bare;
+        full.floor = Some(Floor::under(&Bounds { min: DVec3::NEG_ONE, max: DVec3::ONE }));
+        measure(&format!("64 limbs, floor and shadows, {width} × {height}"), &full, runs);
+        full.figures.push(Figure::new(limbs(), FigureStyle::Before));
+        let points = (0..300).map(|i| DVec3::new(f64::from(i) * 0.005 - 0.7, 1.5, 0.9)).collect();
+        full.tip_paths.push(TipPath { points, current: Some(150), color: Theme::DARK.planes[0] });
+        measure(&format!("the same with the source and a tip path, {width} × {height}"), &full, runs);
+    }
+}
+
+fn measure(name: &str, scene: &SceneView, runs: usize) {
+    let mut canvas = Canvas::default();
+    render_into(scene, &mut canvas);
+    let mut millis: Vec<f64> = (0..runs)
+        .map(|_| {
+            let start = Instant::now();
+            render_into(black_box(scene), black_box(&mut canvas));
+            start.elapsed().as_secs_f64() * 1e3
+        })
+        .collect();
+    millis.sort_by(f64::total_cmp);
+    println!("{name}: median {:.2} ms, best {:.2} ms", millis[runs / 2], millis[0]);
+}
