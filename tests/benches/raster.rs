@@ -35,6 +35,11 @@ fn main() {
     let runs = if std::env::args().any(|argument| argument == "--test") { 1 } else { 300 };
     for (width, height) in [(900, 600), (1920, 1080)] {
         let bare = scene(width, height);
+        measure(
+            &format!("nothing, {width} × {height}"),
+            &SceneView { figures: Vec::new(), ..bare.clone() },
+            runs,
+        );
         measure(&format!("64 limbs, {width} × {height}"), &bare, runs);
         let mut full = bare;
         full.floor = Some(Floor::under(&Bounds { min: DVec3::NEG_ONE, max: DVec3::ONE }));
@@ -57,5 +62,7 @@ fn measure(name: &str, scene: &SceneView, runs: usize) {
         })
         .collect();
     millis.sort_by(f64::total_cmp);
-    println!("{name}: median {:.2} ms, best {:.2} ms", millis[runs / 2], millis[0]);
+    let paper = scene.theme.background.premultiplied();
+    let inked = canvas.image.pixels().iter().filter(|pixel| **pixel != paper).count();
+    println!("{name}, {inked} pixels drawn: median {:.2} ms, best {:.2} ms", millis[runs / 2], millis[0]);
 }
