@@ -2,12 +2,14 @@
 //!
 //! | module | what belongs there |
 //! |---|---|
+//! | `gltf` | glTF and GLB files: reading, patching, the validator |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
 //! | `rotor_practice` | facts of the trade about reflections, planes, signs and order |
 //! | `rotor_properties` | what holds for every rotor, at random ones that lean to the hard places |
 //! | `strategies` | the random values; no tests of its own |
 //! | `support` | where the outside files are, and comparing with a tolerance; no tests of its own |
+mod gltf;
 mod rotor_checks;
 mod rotor_methods;
 mod rotor_practice;

@@ -1,0 +1,87 @@
+//! The frame rate that a clip's key times speak of.
+
+/// Rates that files are made at, in frames per second.
+const USUAL_RATES: [f64; 11] = [24.0, 25.0, 30.0, 48.0, 50.0, 60.0, 72.0, 90.0, 100.0, 120.0, 240.0];
+/// The rate of a clip without two keys.
+const RATE_OF_NOTHING: f64 = 30.0;
+/// More frames than this come from damaged times, not from motion: four hours at 240 a second.
+const MAX_FRAMES: f64 = 3_456_000.0;
+
+/// Frames per second from the middle one of all steps from key to key. A usual rate (or 1000/1001 of it) is taken where
+/// the step is as near to it as times of 32 bits can tell; else a whole rate; else the step itself.
+///
+/// `tracks` are the key times of each sampler in seconds, strictly rising; `duration_secs` is the last of all keys.
+pub(super) fn frame_rate(tracks: &[&[f64]], duration_secs: f64) -> f64 {
+    let mut steps: Vec<f64> =
+        tracks.iter().flat_map(|times| times.windows(2).map(|pair| pair[1] - pair[0])).collect();
+    if steps.is_empty() {
+        return RATE_OF_NOTHING;
+    }
+    let middle = steps.len() / 2;
+    let median = *steps.select_nth_unstable_by(middle, f64::total_cmp).1;
+    // Two rounded times: each off by half of the spacing of 32-bit floats at the last key.
+    let blur = duration_secs.abs() * f64::from(f32::EPSILON) + f64::from(f32::MIN_POSITIVE);
+    let step = refined(median, blur, tracks);
+    let rate = usual(step, blur).unwrap_or(1.0 / step);
+    rate.min(MAX_FRAMES / duration_secs.max(f64::MIN_POSITIVE))
+}
+
+/// The mean step of the longest track, where it is even: its rounding shrinks with the number of keys.
+fn refined(median: f64, blur: f64, tracks: &[&[f64]]) -> f64 {
+    let longest = tracks.iter().max_by_key(|times| times.len());
+    match longest {
+        Some([first, .., last]) => {
+            let mean = (last - first) / (longest.map_or(2, |times| times.len()) - 1) as f64;
+            if (mean - median).abs() <= blur { mean } else { median }
+        }
+        _ => median,
+    }
+}
+
+fn usual(step: f64, blur: f64) -> Option<f64> {
+    let apart = |rate: &f64| (1.0 / rate - step).abs();
+    let candidates = USUAL_RATES.iter().flat_map(|rate| [*rate, rate * 1000.0 / 1001.0]);
+    let near = |rate: &f64| apart(rate) <= blur;
+    candidates
+        .filter(near)
+        .min_by(|a, b| apart(a).total_cmp(&apart(b)))
+        .or_else(|| Some((1.0 / step).round()).filter(|rate| *rate >= 1.0 && near(rate)))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[track_caller]
+    fn check(rate: f64, n_keys: usize, expected: f64) {
+        let times: Vec<f64> = (0..n_keys).map(|key| f64::from((key as f64 / rate) as f32)).collect();
+        let found = frame_rate(&[&times], *times.last().unwrap());
+        assert!((found - expected).abs() < 1e-9 * expected, "{rate}: expected {expected}, found {found}");
+    }
+
+    #[test]
+    fn usual_rates_are_known_again_in_rounded_times() {
+        for rate in USUAL_RATES {
+            for n_keys in [3, 50, 5000, 36000] {
+                check(rate, n_keys, rate);
+                check(rate * 1000.0 / 1001.0, n_keys, rate * 1000.0 / 1001.0);
+            }
+        }
+        check(2.0, 12, 2.0);
+        check(15.0, 100, 15.0);
+    }
+
+    #[test]
+    fn other_rates_stay_what_they_are() {
+        let times = [0.0, 1.25];
+        assert_eq!(frame_rate(&[&times], 1.25), 0.8);
+        assert_eq!(frame_rate(&[&[0.5]], 0.5), RATE_OF_NOTHING);
+        assert_eq!(frame_rate(&[], 0.0), RATE_OF_NOTHING);
+    }
+
+    #[test]
+    fn damaged_times_do_not_ask_for_endless_frames() {
+        let times = [0.0, 1e-38, 3e38];
+        assert!(frame_rate(&[&times[..2], &times], 3e38) * 3e38 < 1e7);
+    }
+}
