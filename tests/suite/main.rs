@@ -2,6 +2,7 @@
 //!
 //! | module | what belongs there |
 //! |---|---|
+//! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
 //! | `gltf` | glTF and GLB files: reading, patching, the validator |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
@@ -9,6 +10,7 @@
 //! | `rotor_properties` | what holds for every rotor, at random ones that lean to the hard places |
 //! | `strategies` | the random values; no tests of its own |
 //! | `support` | where the outside files are, and comparing with a tolerance; no tests of its own |
+mod demo;
 mod gltf;
 mod rotor_checks;
 mod rotor_methods;

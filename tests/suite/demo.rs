@@ -1,0 +1,227 @@
+//! The demo scenes: made here by our own code, with faults planted whose truth is known.
+//!
+//! `UPDATE_DEMOS=1 cargo test demo_scenes_are_current` writes them anew, and their clean originals to
+//! `tests/data/demo_clean`. Without the variable the test compares the files, bit for bit.
+
+mod body;
+mod crane;
+mod deckhand;
+mod heron;
+mod write;
+
+use std::path::{Path, PathBuf};
+
+use turnwright::exchange::disk;
+use turnwright::rotor::{EulerOrder, Rotor};
+use turnwright::snag::SnagKind;
+
+use body::Motion;
+use write::{Channel, Columns};
+
+/// A fault that was put into a demo clip: its kind, joint, first and last frame.
+type Planted = (SnagKind, &'static str, usize, usize);
+
+/// The faults of `deckhand.bvh`, besides the wraps of the hips that follow from the heading.
+const DECKHAND: &[Planted] = &[
+    (SnagKind::BrokenValue, "Neck", 40, 40),
+    (SnagKind::MirroredAngles, "RightForearm", 150, 171),
+    (SnagKind::HalfTurn, "RightThigh", 206, 219),
+    (SnagKind::HalfTurn, "RightFoot", 206, 219),
+    (SnagKind::Spike, "LeftHand", 95, 95),
+    (SnagKind::Spike, "Head", 250, 251),
+];
+
+/// The faults of `heron.glb`.
+const HERON: &[Planted] = &[
+    (SnagKind::BrokenValue, "RightTarsus", 88, 88),
+    (SnagKind::SignFlip, "LeftWing", 120, 143),
+    (SnagKind::LongWay, "NeckHigh", 99, 108),
+    (SnagKind::Spike, "Head", 205, 205),
+];
+
+/// The faults of `crane.csv`, besides the wrap where it slews past 180°.
+const CRANE: &[Planted] = &[
+    (SnagKind::BrokenValue, "Hook", 150, 150),
+    (SnagKind::SignFlip, "Fall", 88, 110),
+    (SnagKind::Spike, "Boom", 60, 60),
+];
+
+/// Every ninth frame is a key of the heron's upper neck.
+const NECK_KEY_FRAMES: usize = 9;
+
+/// Name of the file, its bytes with faults, and its bytes without.
+fn clips() -> [(&'static str, Vec<u8>, Vec<u8>); 3] {
+    let deckhand = deckhand::motion();
+    let heron = heron::motion();
+    let crane = crane::motion();
+    [
+        ("deckhand.bvh", deckhand_bvh(&deckhand, true), deckhand_bvh(&deckhand, false)),
+        ("heron.glb", heron_glb(&heron, true), heron_glb(&heron, false)),
+        ("crane.csv", crane_csv(&crane, true), crane_csv(&crane, false)),
+    ]
+}
+
+/// Frames of the fault of this kind in this joint.
+fn frames(planted: &[Planted], kind: SnagKind, joint: &str) -> std::ops::RangeInclusive<usize> {
+    let own = planted.iter().find(|fault| fault.0 == kind && fault.1 == joint).expect("the fault is listed");
+    own.2..=own.3
+}
+
+fn deckhand_bvh(clean: &Motion, faulty: bool) -> Vec<u8> {
+    if !faulty {
+        return write::bvh(clean, &write::angles(clean));
+    }
+    let mut motion = clean.clone();
+    for joint in ["RightThigh", "RightFoot"] {
+        let bone = motion.bone(joint);
+        for frame in frames(DECKHAND, SnagKind::HalfTurn, joint) {
+            motion.poses[frame].turns[bone] = motion.poses[frame].turns[bone] * body::y(180.0);
+        }
+    }
+    let hand = motion.bone("LeftHand");
+    for frame in frames(DECKHAND, SnagKind::Spike, "LeftHand") {
+        motion.poses[frame].turns[hand] = motion.poses[frame].turns[hand] * body::z(41.0);
+    }
+    let head = motion.bone("Head");
+    for (frame, degrees) in frames(DECKHAND, SnagKind::Spike, "Head").zip([31.0, 22.0]) {
+        motion.poses[frame].turns[head] = motion.poses[frame].turns[head] * body::y(degrees);
+    }
+
+    let mut angles = write::angles(&motion);
+    for triple in &mut angles[motion.bone("Hips")] {
+        triple[2] = within_half_turn(triple[2]);
+    }
+    let forearm = motion.bone("RightForearm");
+    for frame in frames(DECKHAND, SnagKind::MirroredAngles, "RightForearm") {
+        let mirrored = EulerOrder::ZXY.mirrored(angles[forearm][frame].map(f64::to_radians));
+        angles[forearm][frame] = mirrored.map(f64::to_degrees).map(within_half_turn);
+    }
+    let neck = motion.bone("Neck");
+    for frame in frames(DECKHAND, SnagKind::BrokenValue, "Neck") {
+        angles[neck][frame] = [f64::NAN; 3];
+    }
+    write::bvh(&motion, &angles)
+}
+
+fn heron_glb(motion: &Motion, faulty: bool) -> Vec<u8> {
+    let unmoved = ["Bill", "LeftWingTip", "RightWingTip"];
+    let moved = (0..motion.bones.len()).filter(|&bone| !unmoved.contains(&motion.bones[bone].name));
+    let mut channels: Vec<Channel> = moved
+        .map(|bone| {
+            let keys = motion.unrolled(bone);
+            let times = (0..keys.len()).map(|frame| frame as f64 / motion.rate).collect();
+            match motion.bones[bone].name {
+                "NeckHigh" => cubic_channel(bone, &keys, motion.rate),
+                _ => Channel { bone, times, keys, tangents: None },
+            }
+        })
+        .collect();
+    if faulty {
+        let mut keys = |joint: &str| {
+            let bone = motion.bone(joint);
+            let channel = channels.iter_mut().find(|channel| channel.bone == bone).expect("the joint moves");
+            std::mem::take(&mut channel.keys)
+        };
+        let (mut tarsus, mut wing, mut head, mut neck) =
+            (keys("RightTarsus"), keys("LeftWing"), keys("Head"), keys("NeckHigh"));
+        for frame in frames(HERON, SnagKind::BrokenValue, "RightTarsus") {
+            tarsus[frame] = tarsus[frame].scale(1.18);
+        }
+        for frame in frames(HERON, SnagKind::SignFlip, "LeftWing") {
+            wing[frame] = -wing[frame];
+        }
+        for frame in frames(HERON, SnagKind::Spike, "Head") {
+            head[frame] = head[frame] * body::y(29.0) * body::x(11.0);
+        }
+        let from = frames(HERON, SnagKind::LongWay, "NeckHigh").last().expect("two keys") / NECK_KEY_FRAMES;
+        neck[from..].iter_mut().for_each(|key| *key = -*key);
+        for (joint, keys) in [("RightTarsus", tarsus), ("LeftWing", wing), ("Head", head), ("NeckHigh", neck)]
+        {
+            let bone = motion.bone(joint);
+            let channel = channels.iter_mut().find(|channel| channel.bone == bone).expect("the joint moves");
+            channel.keys = keys;
+            for tangents in channel.tangents.iter_mut().flat_map(|all| all.iter_mut().skip(from)) {
+                *tangents = tangents.map(|tangent| -tangent);
+            }
+        }
+    }
+    write::glb(motion, "Take-off", &channels)
+}
+
+/// Few keys with the rates of the motion itself, on a cubic.
+fn cubic_channel(bone: usize, turns: &[Rotor], rate: f64) -> Channel {
+    let last = turns.len() - 1;
+    let key_frames: Vec<usize> = (0..turns.len()).step_by(NECK_KEY_FRAMES).collect();
+    let tangent = |frame: usize| {
+        let (before, after) = (turns[frame.max(1) - 1], turns[(frame + 1).min(last)]);
+        let per_second = rate / ((frame + 1).min(last) - (frame.max(1) - 1)) as f64;
+        Rotor::new(after.s - before.s, after.yz - before.yz, after.zx - before.zx, after.xy - before.xy)
+            .scale(per_second)
+    };
+    Channel {
+        bone,
+        times: key_frames.iter().map(|&frame| frame as f64 / rate).collect(),
+        keys: key_frames.iter().map(|&frame| turns[frame]).collect(),
+        tangents: Some(key_frames.iter().map(|&frame| [tangent(frame); 2]).collect()),
+    }
+}
+
+fn crane_csv(motion: &Motion, faulty: bool) -> Vec<u8> {
+    let mut slewing: Vec<[f64; 3]> =
+        (0..motion.poses.len()).map(|row| [0.0, 0.0, crane::slew_deg(row as f64 / motion.rate)]).collect();
+    let mut boom: Vec<[f64; 3]> = motion
+        .unrolled(motion.bone("Boom"))
+        .into_iter()
+        .map(|rotor| rotor.plane_angles().to_degrees())
+        .collect();
+    let mut fall = motion.unrolled(motion.bone("Fall"));
+    let mut hook = motion.unrolled(motion.bone("Hook"));
+    if faulty {
+        slewing.iter_mut().for_each(|triple| triple[2] = within_half_turn(triple[2]));
+        for row in frames(CRANE, SnagKind::Spike, "Boom") {
+            boom[row][0] += 16.0;
+        }
+        for row in frames(CRANE, SnagKind::SignFlip, "Fall") {
+            fall[row] = -fall[row];
+        }
+        for row in frames(CRANE, SnagKind::BrokenValue, "Hook") {
+            hook[row] = hook[row].scale(0.86);
+        }
+    }
+    let joints = [
+        (motion.bone("Slewing"), Columns::Angles(slewing)),
+        (motion.bone("Boom"), Columns::PlaneAngles(boom)),
+        (motion.bone("Fall"), Columns::Rotors(fall)),
+        (motion.bone("Hook"), Columns::Rotors(hook)),
+    ];
+    write::csv(motion, &joints)
+}
+
+/// An angle as captures store it, from −180° to 180°.
+fn within_half_turn(degrees: f64) -> f64 {
+    degrees - 360.0 * (degrees / 360.0).round()
+}
+
+fn folder(path: &str) -> PathBuf {
+    Path::new(env!("CARGO_MANIFEST_DIR")).join(path)
+}
+
+#[test]
+fn demo_scenes_are_current() {
+    let update = std::env::var_os("UPDATE_DEMOS").is_some();
+    for (name, faulty, clean) in clips() {
+        for (path, bytes) in [("demo-scenes", faulty), ("tests/data/demo_clean", clean)] {
+            let path = folder(path).join(name);
+            if update {
+                disk::write(&path, &bytes).unwrap();
+            }
+            let found = disk::read(&path).unwrap();
+            // Not `assert_eq`: nobody wants to read two lists of bytes.
+            assert!(
+                found == bytes,
+                "{} is not what the generator makes; UPDATE_DEMOS=1 cargo test demo_scenes_are_current",
+                path.display()
+            );
+        }
+    }
+}
