@@ -177,7 +177,9 @@ fn crane_csv(motion: &Motion, faulty: bool) -> Vec<u8> {
     let mut fall = motion.unrolled(motion.bone("Fall"));
     let mut hook = motion.unrolled(motion.bone("Hook"));
     if faulty {
-        slewing.iter_mut().for_each(|triple| triple[2] = within_half_turn(triple[2]));
+        for triple in &mut slewing {
+            triple[2] = within_half_turn(triple[2]);
+        }
         for row in frames(CRANE, SnagKind::Spike, "Boom") {
             boom[row][0] += 16.0;
         }
