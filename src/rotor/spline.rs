@@ -307,7 +307,7 @@ fn turning_term(f: DVec3, g: DVec3) -> DVec3 {
     let (k1, k2) = if f1 < SERIES_BELOW_RAD {
         (
             1.0 / 12.0 + f2 * (-1.0 / 180.0 + f2 * (1.0 / 6_720.0 - f2 / 453_600.0)),
-            -1.0 / 60.0 + f2 * (1.0 / 1_260.0 + f2 * (-1.0 / 60_480.0 + f2 / 4_989_600.0)),
+            -1.0 / 60.0 + f2 * (1.0 / 1_260.0 - f2 / 60_480.0),
         )
     } else {
         let (sin, cos) = f1.sin_cos();
@@ -323,5 +323,51 @@ fn sine_rest(f1: f64, f2: f64) -> f64 {
         1.0 / 6.0 + f2 * (-1.0 / 120.0 + f2 * (1.0 / 5_040.0 - f2 / 362_880.0))
     } else {
         (f1 - f1.sin()) / (f2 * f1)
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Angles of the same direction and of all sizes, the limit of the series among them.
+    fn sizes() -> impl Iterator<Item = DVec3> {
+        let direction = DVec3::new(2.0, -1.0, 0.5).normalize();
+        [0.0, 1e-300, 1e-9, 1e-3, 0.05, 0.099_999, 0.100_001, 1.0, 3.0, 6.0]
+            .into_iter()
+            .map(move |size| direction * size)
+    }
+
+    #[test]
+    fn the_two_jacobians_undo_each_other() {
+        for f in sizes() {
+            let product = jacobian(f) * inverse_jacobian(f);
+            assert!(product.abs_diff_eq(DMat3::IDENTITY, 3e-14), "{f}: {product}");
+        }
+    }
+
+    #[test]
+    fn the_jacobian_is_the_slope_of_exp() {
+        // Body rate of exp(f + g t) by a central difference.
+        let (g, dt) = (DVec3::new(0.3, 0.7, -0.2), 1e-5);
+        for f in sizes() {
+            let at = |t: f64| Rotor::from_plane_angles(Bivector::from_axis(f + g * t));
+            let rate = ((at(-dt).reverse() * at(dt)).plane_angles() / (2.0 * dt)).axis();
+            assert!(rate.abs_diff_eq(jacobian(f) * g, 1e-9), "{f}: {rate}");
+            // And its change: J(f + g t) g has the slope of the turning term alone, as g stays.
+            let slope = (jacobian(f + g * dt) * g - jacobian(f - g * dt) * g) / (2.0 * dt);
+            assert!(slope.abs_diff_eq(turning_term(f, g), 1e-9), "{f}: {slope}");
+        }
+    }
+
+    #[test]
+    fn series_and_closed_forms_meet() {
+        let direction = DVec3::new(2.0, -1.0, 0.5).normalize();
+        let g = DVec3::new(0.3, 0.7, -0.2);
+        let sides = [1.0 - 1e-12, 1.0 + 1e-12].map(|share| direction * (SERIES_BELOW_RAD * share));
+        let [below, above] = sides.map(|f| inverse_jacobian(f) * g);
+        assert!(below.abs_diff_eq(above, 2e-13), "{below} {above}");
+        let [below, above] = sides.map(|f| turning_term(f, g));
+        assert!(below.abs_diff_eq(above, 2e-13), "{below} {above}");
     }
 }

@@ -10,6 +10,8 @@ use turnwright::rotor::{
     parabola_rate, slerp, squad, squad_inner, squad_inner_uneven,
 };
 
+use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
+
 use crate::support::{Distance, Tally, largest, list, number, numbers, shared_json, unit_rotor};
 
 /// Runs `check(input, output, tolerance, compare)` on every case of a kind. It gives the errors that the tolerance of the case
@@ -40,14 +42,11 @@ fn vector(value: &Value) -> DVec3 {
 
 #[test]
 fn no_kind_is_forgotten() {
-    /// Forward kinematics belongs to the skeleton.
-    const ELSEWHERE: [&str; 1] = ["forward_kinematics"];
     let here = include_str!("rotor_checks.rs");
     let Some(file) = shared_json("checks/rotation_checks.json") else { return };
     let kinds = file["meta"]["kinds"].as_object().expect("the file counts each kind");
     for kind in kinds.keys() {
-        let tested =
-            here.contains(&format!("for_each_case(\"{kind}\"")) || ELSEWHERE.contains(&kind.as_str());
+        let tested = here.contains(&format!("for_each_case(\"{kind}\""));
         assert!(tested, "no test for the kind {kind}");
     }
 }
@@ -273,6 +272,37 @@ fn euler_both_ways() {
             errors.push(order.from_rotor(rotor, 0.0).distance_to(&angles));
         }
         errors
+    });
+}
+
+#[test]
+fn forward_kinematics() {
+    for_each_case("forward_kinematics", |input, output, _| {
+        let joint = |(number, (parent, offset)): (usize, (&Value, &Value))| Joint {
+            name: format!("joint {number}"),
+            number,
+            parent: parent.as_u64().map(|parent| usize::try_from(parent).expect("a small index")),
+            rest: Transform::from_translation(vector(offset)),
+            kind: JointKind::Joint,
+            tips: vec![],
+        };
+        let (parents, offsets) = (list(&input["parents"]), list(&input["offsets"]));
+        let joints = parents.iter().zip(offsets).enumerate().map(joint).collect();
+        let skeleton = Skeleton::new(joints).expect("parents stand before children");
+        let mut pose = skeleton.rest_pose();
+        for (transform, local) in pose.iter_mut().zip(list(&input["local"])) {
+            transform.rotation = unit_rotor(local);
+        }
+        let expected = list(&output["global"]).iter().zip(list(&output["positions"]));
+        let world = skeleton.world(&pose);
+        assert_eq!(world.len(), expected.len());
+        let errors = world.iter().zip(expected).flat_map(|(found, (rotation, position))| {
+            [
+                found.rotation.distance_to(&unit_rotor(rotation)),
+                found.position().distance_to(&vector(position)),
+            ]
+        });
+        errors.collect()
     });
 }
 

@@ -6,8 +6,8 @@ use glam::{DMat3, DVec3};
 use proptest::prelude::*;
 use proptest::test_runner::RngSeed;
 use turnwright::rotor::{
-    Bivector, EndRates, EulerOrder, RotationSpline, Rotor, SwingTwist, chordal_mean, geodesic_mean, hermite,
-    slerp, slerp_as_signed, squad, squad_inner,
+    Axis, Bivector, EndRates, EulerOrder, RotationSpline, Rotor, SwingTwist, chordal_mean, geodesic_mean,
+    hermite, slerp, slerp_as_signed, squad, squad_inner,
 };
 
 use crate::strategies::{angle, euler_order, tiny, two_rotors, two_vectors, unit_rotor, unit_vector};
@@ -316,6 +316,7 @@ proptest! {
             assert_close!(spline.at(t), *key, 0.0);
             let near = 1e-9;
             assert_close!(spline.at(t - near), *key, 1e-6);
+            assert!(spline.at(t - near).dot(spline.at(t + near)) > 0.9, "the sign does not jump");
             assert_close!(spline.rate(t - near), spline.rate(t + near), 1e-5);
             assert_close!(spline.acceleration(t - near), spline.acceleration(t + near), 1e-4);
         }
@@ -369,8 +370,25 @@ fn nothing_to_work_on_gives_no_turn() {
     assert_eq!(chordal_mean(&[]), None);
     assert_eq!(chordal_mean(&[(Rotor::IDENTITY, 0.0)]), None);
     assert_eq!(chordal_mean(&[(Rotor::IDENTITY, 1.0), (Rotor::IDENTITY, -1.0)]), None);
+    assert_eq!(chordal_mean(&[(Rotor::IDENTITY, 2.0), (Axis::X.rotor(1.0), -1.0)]), None);
     assert_eq!(chordal_mean(&[(nan, 1.0)]), None);
     assert_eq!(geodesic_mean(&[(Rotor::IDENTITY, f64::NAN)]), None);
+}
+
+#[test]
+fn a_spline_keeps_the_end_rates_it_is_given_and_holds_beyond() {
+    let keys = [Rotor::IDENTITY, Axis::X.rotor(0.8), Axis::Y.rotor(-0.5)];
+    let times = [1.0, 1.5, 3.0];
+    let ends = [Bivector::new(0.3, -0.2, 0.1), Bivector::ZERO];
+    let spline = RotationSpline::new(&times, &keys, EndRates::Given(ends[0], ends[1])).expect("sound keys");
+    for (key, end, at_and_beyond) in
+        [(keys[0], ends[0], [1.0, 0.5, -1e9]), (keys[2], ends[1], [3.0, 3.5, 1e9])]
+    {
+        for t in at_and_beyond {
+            assert_close!(spline.at(t), key, 0.0, "at {t}");
+            assert_close!(spline.rate(t), end, 1e-14, "at {t}");
+        }
+    }
 }
 
 #[test]

@@ -64,7 +64,7 @@ pub(crate) fn two_rotors() -> impl Strategy<Value = [Rotor; 2]> {
 
 /// Two vectors that are not zero, of any lengths: often along each other, opposite, or next to that.
 pub(crate) fn two_vectors() -> impl Strategy<Value = [DVec3; 2]> {
-    let length = (-200.0..150.0_f64).prop_map(|power| 10_f64.powf(power));
+    let length = (-300.0..300.0_f64).prop_map(|power| 10_f64.powf(power));
     let near = (unit_vector(), unit_vector(), tiny(), any::<bool>()).prop_map(|(u, side, off, opposite)| {
         let v = u + side * off;
         [u, if opposite { -v } else { v }]
