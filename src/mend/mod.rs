@@ -1,5 +1,12 @@
-//! Mending rotation faults. One file a kind; a mend gives a new clip and leaves the old one as it was.
+//! Mending rotation faults. One file a kind of remedy; a mend gives a new clip and leaves the old one as it was.
 
+mod apply;
+mod draft;
 mod error;
+mod numbers;
+mod redraw;
+mod survey;
 
+pub use apply::{apply, apply_all, change_rad};
 pub use error::MendError;
+pub use survey::{Survey, SurveyOptions, survey};

@@ -1,9 +1,21 @@
 //! Finding rotation faults. One file a kind; reads clips, never changes them.
 
+mod angle_steps;
+mod branches;
+mod broken_value;
+mod find;
 mod finding;
 mod kind;
+mod long_way;
+mod mirrored_angles;
+mod plane_turns;
 mod progress;
+mod scan;
+mod sign_flip;
+mod wrap;
 
+pub use find::find;
 pub use finding::{Remedy, Snag};
 pub use kind::{NoSuchKind, SnagKind};
+pub(crate) use plane_turns::nearest_plane_angles;
 pub use progress::{Cancelled, Progress, Unwatched};

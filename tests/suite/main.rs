@@ -8,6 +8,7 @@
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
 //! | `rotor_practice` | facts of the trade about reflections, planes, signs and order |
 //! | `rotor_properties` | what holds for every rotor, at random ones that lean to the hard places |
+//! | `snags` | faults found and mended: built clips with one fault, and the real files with what is known of them |
 //! | `strategies` | the random values; no tests of its own |
 //! | `support` | where the outside files are, and comparing with a tolerance; no tests of its own |
 mod demo;
@@ -16,5 +17,6 @@ mod rotor_checks;
 mod rotor_methods;
 mod rotor_practice;
 mod rotor_properties;
+mod snags;
 mod strategies;
 mod support;

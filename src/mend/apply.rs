@@ -1,0 +1,93 @@
+//! Applies mends to a clip.
+
+use std::collections::BTreeMap;
+
+use crate::clip::Clip;
+use crate::snag::{Remedy, Snag};
+
+use super::draft::Draft;
+use super::{MendError, numbers, redraw};
+
+/// `clip` with one snag mended. The same snag in the same clip always gives the same numbers; joints other than the
+/// snag's stay shared, and so does its own when there is nothing to do ([`Remedy::Ask`]).
+///
+/// # Errors
+/// When the snag does not fit the clip.
+pub fn apply(clip: &Clip, snag: &Snag) -> Result<Clip, MendError> {
+    apply_all(clip, std::slice::from_ref(snag))
+}
+
+/// `clip` with several snags mended, in the order given. As [`apply`] one after the other, at the cost of one copy of each
+/// joint's keys.
+///
+/// # Errors
+/// When one of the snags does not fit the clip.
+pub fn apply_all(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
+    let mut drafts: BTreeMap<usize, Draft> = BTreeMap::new();
+    for snag in snags {
+        let draft = match drafts.entry(snag.joint) {
+            std::collections::btree_map::Entry::Occupied(entry) => entry.into_mut(),
+            std::collections::btree_map::Entry::Vacant(entry) => entry.insert(draft_of(clip, snag.joint)?),
+        };
+        let label = || clip.skeleton.label(snag.joint).to_owned();
+        if snag.first_key > snag.last_key || snag.last_key >= draft.len() {
+            let key = snag.first_key.max(snag.last_key);
+            return Err(MendError::NoSuchKey { joint: label(), count: draft.len(), key });
+        }
+        mend(draft, snag);
+    }
+    let mut mended = clip.clone();
+    for (joint, draft) in drafts {
+        if let Some(track) = draft.finish() {
+            mended = mended.with_rotation(joint, track);
+        }
+    }
+    Ok(mended)
+}
+
+fn draft_of(clip: &Clip, joint: usize) -> Result<Draft, MendError> {
+    let track = clip.rotation(joint).filter(|track| !track.keys.is_empty());
+    track.map(Draft::new).ok_or_else(|| MendError::NoKeys {
+        joint: if joint < clip.skeleton.len() {
+            clip.skeleton.label(joint).to_owned()
+        } else {
+            joint.to_string()
+        },
+    })
+}
+
+/// Mends one snag whose keys exist in the draft.
+pub(super) fn mend(draft: &mut Draft, snag: &Snag) {
+    let (first, last) = (snag.first_key, snag.last_key);
+    match snag.remedy {
+        Remedy::Normalise => numbers::normalise(draft, first..=last),
+        Remedy::Negate => numbers::negate(draft, first..=last),
+        Remedy::Unwrap(turns) => numbers::unwrap(draft, first..=last, turns),
+        Remedy::NearestAngles => numbers::nearest(draft, first, last),
+        Remedy::Redraw => redraw::redraw(draft, first, last),
+        Remedy::ShortWay => numbers::short_way(draft, last),
+        Remedy::TakeOut(_) | Remedy::TakeOutAbove(_) | Remedy::Ask => {}
+    }
+}
+
+/// The largest turn between `before` and `after` at the keys of a joint, in radians. Where a key of `before` is no
+/// rotation, what is played in its place counts.
+pub fn change_rad(before: &Clip, after: &Clip, joint: usize) -> f64 {
+    let (Some(old), Some(new)) = (before.rotation(joint), after.rotation(joint)) else { return 0.0 };
+    if before.same_joint(after, joint) {
+        return 0.0;
+    }
+    if old.keys.len() != new.keys.len() || old.times != new.times {
+        let times = old.times.iter().chain(new.times.iter());
+        return times.map(|time| old.at(time).turn_to(new.at(time))).fold(0.0, f64::max);
+    }
+    let mut played = old.sound_key(0);
+    let mut largest: f64 = 0.0;
+    for (own, others) in old.keys.iter().zip(new.keys.iter()) {
+        played = own.try_normalize().unwrap_or(played);
+        if let Some(others) = others.try_normalize() {
+            largest = largest.max(played.turn_to(others));
+        }
+    }
+    largest
+}

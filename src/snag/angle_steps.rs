@@ -1,0 +1,107 @@
+//! Steps of a stored angle over half a turn, told apart: a wrap while the joint hardly moves, or a real move that the
+//! file may mean.
+
+use crate::clip::FileAngles;
+
+use super::branches::{Branches, short};
+use super::scan::Scan;
+
+/// The joint hardly moves below this, whatever its rates.
+const HARDLY_DEG: f64 = 30.0;
+
+/// Or below this many times its usual step near by.
+const USUAL_STEPS: f64 = 2.5;
+
+/// What is left of a wrap once its whole turns are taken out is never more than this.
+const WRAP_REST_DEG: f64 = 90.0;
+
+/// Keys looked at to both sides for the usual step.
+const NEAR_KEYS: usize = 5;
+
+/// A step over half a turn of one stored angle.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) struct AngleStep {
+    /// The key after the step.
+    pub(super) key: usize,
+    /// Which of the three angles.
+    pub(super) channel: usize,
+    /// The whole turns that take the step out of all that follows.
+    pub(super) turns: i32,
+    /// Whether the angle leaves (1) or enters (−1) its usual range with this step.
+    pub(super) leaves: i8,
+    /// Whether it is a wrap.
+    pub(super) is_wrap: bool,
+}
+
+/// All steps over half a turn between keys on the kept branch, in order.
+pub(super) fn angle_steps(scan: &Scan<'_>, angles: &FileAngles, branches: &Branches) -> Vec<AngleStep> {
+    let lows: [f64; 3] = std::array::from_fn(|channel| usual_low(angles, channel));
+    let mut steps = Vec::new();
+    let mut before: Option<(usize, [i32; 3])> = None;
+    for key in 0..angles.degrees.len() {
+        let Some(row) = branches.row[key].filter(|_| !branches.mirrored[key]) else { continue };
+        let stored = angles.degrees[key];
+        let level: [i32; 3] = std::array::from_fn(|i| ((row[i] - stored[i]) / 360.0).round() as i32);
+        if let Some((near, near_level)) = before {
+            for channel in 0..3 {
+                // Angles beyond ±2³¹ turns have no digits left for the turn itself.
+                let turns = level[channel].saturating_sub(near_level[channel]);
+                if turns != 0 {
+                    let inside = |key: usize| {
+                        let angle = angles.degrees[key][channel] - lows[channel];
+                        (-1e-3..=360.001).contains(&angle)
+                    };
+                    steps.push(AngleStep {
+                        key,
+                        channel,
+                        turns,
+                        leaves: i8::from(!inside(key)) - i8::from(!inside(near)),
+                        is_wrap: key > near + 1 || is_wrap(scan, angles, key, channel),
+                    });
+                }
+            }
+        }
+        before = Some((key, level));
+    }
+    steps
+}
+
+/// Where the usual range of an angle begins: most files keep to ±180, some to 0 to 360.
+fn usual_low(angles: &FileAngles, channel: usize) -> f64 {
+    let count_in = |low: f64| {
+        let inside = |triple: &&[f64; 3]| (low..=low + 360.0).contains(&triple[channel]);
+        angles.degrees.iter().filter(inside).count()
+    };
+    if count_in(0.0) > count_in(-180.0) { 0.0 } else { -180.0 }
+}
+
+fn is_wrap(scan: &Scan<'_>, angles: &FileAngles, key: usize, channel: usize) -> bool {
+    let step = |key: usize| angles.degrees[key][channel] - angles.degrees[key - 1][channel];
+    let own = step(key);
+    // A wheel that is stored with whole steps of more than half a turn goes on so; a wrap comes once.
+    let goes_on = |key: usize| {
+        (1..angles.degrees.len()).contains(&key)
+            && step(key).signum() == own.signum()
+            && step(key).abs() > 180.0
+    };
+    let Some(turn) = turn_into(scan, key) else { return false };
+    if short(own).abs() > WRAP_REST_DEG || goes_on(key - 1) || goes_on(key + 1) {
+        return false;
+    }
+    turn < HARDLY_DEG || turn < USUAL_STEPS * usual_step(scan, key)
+}
+
+/// The turn of the joint into a key, in degrees.
+fn turn_into(scan: &Scan<'_>, key: usize) -> Option<f64> {
+    Some(scan.unit(key.checked_sub(1)?)?.turn_to(scan.unit(key)?).to_degrees())
+}
+
+/// The median turn into the keys around, the own left out, in degrees.
+fn usual_step(scan: &Scan<'_>, key: usize) -> f64 {
+    let last = scan.track.keys.len() - 1;
+    let near = key.saturating_sub(NEAR_KEYS).max(1)..=(key + NEAR_KEYS).min(last);
+    let mut turns: Vec<f64> =
+        near.filter(|&other| other != key).filter_map(|key| turn_into(scan, key)).collect();
+    turns.sort_by(f64::total_cmp);
+    turns.get(turns.len() / 2).copied().unwrap_or(0.0)
+}

@@ -1,0 +1,92 @@
+//! Stored values that are no rotation: not finite, zero, or off unit length.
+
+use crate::clip::{Clip, PathKind, Stored};
+use crate::rotor::slerp;
+
+use super::scan::{Finding, Scan, runs};
+use super::{Remedy, Snag, SnagKind};
+
+/// Lengths further from 1 than this are off.
+const NORM_TOLERANCE: f64 = 1e-3;
+
+/// Between these lengths only the length is wrong: the direction is trusted.
+const SOUND_LENGTHS: std::ops::RangeInclusive<f64> = 0.5..=2.0;
+
+/// How far, beside the step across it, a key of quite another length may lie from its neighbours and be trusted.
+const SOUND_DIRECTION_RAD: f64 = 0.17;
+
+#[derive(Clone, Copy, Debug, PartialEq)]
+enum Fault {
+    OffUnit,
+    NoRotation,
+}
+
+/// Finds broken values of one joint.
+pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
+    let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
+    runs((0..scan.track.keys.len()).map(|key| fault(&scan, key)))
+        .into_iter()
+        .map(|(first, last, fault)| {
+            let (name, span) = (scan.label(), scan.span(first, last));
+            let (remedy, text) = match fault {
+                Fault::OffUnit => {
+                    let off = |key: usize| (scan.track.keys[key].norm() - 1.0).abs();
+                    let worst = (first..=last).map(off).fold(0.0, f64::max);
+                    (Remedy::Normalise, format!("{name} is off unit length by up to {worst:.4} {span}"))
+                }
+                Fault::NoRotation => (Remedy::Redraw, format!("{name} has no usable value {span}")),
+            };
+            scan.snag(Finding {
+                kind: SnagKind::BrokenValue,
+                keys: (first, last),
+                size_rad: 0.0,
+                confidence: 1.0,
+                remedy,
+                safe: true,
+                text,
+            })
+        })
+        .collect()
+}
+
+fn fault(scan: &Scan<'_>, key: usize) -> Option<Fault> {
+    let rotor = scan.track.keys[key];
+    let finite = |triple: &[f64; 3]| triple.iter().all(|angle| angle.is_finite());
+    match &scan.track.stored {
+        Stored::Angles(angles) => (!finite(&angles.degrees[key])).then_some(Fault::NoRotation),
+        Stored::PlaneAngles(degrees) => (!finite(&degrees[key])).then_some(Fault::NoRotation),
+        Stored::Rotors => {
+            let norm = rotor.norm();
+            let is_cubic = |segment: usize| scan.track.paths.of(segment) == PathKind::Cubic;
+            let tangents_used = is_cubic(key) || (key > 0 && is_cubic(key - 1));
+            let tangents_finite = scan.track.tangents.as_ref().is_none_or(|tangents| {
+                !tangents_used || tangents[key].iter().all(|tangent| tangent.is_finite())
+            });
+            if !tangents_finite {
+                Some(Fault::NoRotation)
+            } else if (norm - 1.0).abs() <= NORM_TOLERANCE {
+                None
+            } else if SOUND_LENGTHS.contains(&norm) || points_along(scan, key) {
+                Some(Fault::OffUnit)
+            } else {
+                Some(Fault::NoRotation)
+            }
+        }
+    }
+}
+
+/// Whether a key of quite another length still lies on the way between its neighbours.
+fn points_along(scan: &Scan<'_>, key: usize) -> bool {
+    let neighbour =
+        |key: Option<usize>| key.filter(|&key| key < scan.track.keys.len()).and_then(|key| scan.unit(key));
+    let (before, after) = (neighbour(key.checked_sub(1)), neighbour(Some(key + 1)));
+    match (before, scan.unit(key), after) {
+        (Some(before), Some(own), Some(after)) => {
+            own.turn_to(slerp(before, after, 0.5)) <= before.turn_to(after) + SOUND_DIRECTION_RAD
+        }
+        (Some(near), Some(own), None) | (None, Some(own), Some(near)) => {
+            own.turn_to(near) <= SOUND_DIRECTION_RAD
+        }
+        _ => false,
+    }
+}
