@@ -5,7 +5,7 @@ use glam::{DVec3, Vec2};
 use crate::raster::camera::{Projection, View};
 use crate::raster::image::{Image, blend_pixel, mix_pixel};
 use crate::raster::palette::Color;
-use crate::raster::shape::{ConeFrame, PolygonScan, RoundCone, scan_line};
+use crate::raster::shape::{ConeFrame, PolygonScan, RoundCone, pixel_span, scan_line};
 
 /// The depth of a pixel on which nothing stands.
 const FAR: f32 = f32::NEG_INFINITY;
@@ -18,8 +18,8 @@ pub struct Canvas {
     /// Depth key of each pixel (see [`View::key`]): larger is nearer.
     depth: Vec<f32>,
     polygons: PolygonScan,
-    /// Darkness of shadows while a floor is drawn; all zero at other times.
-    shadow_mask: Vec<u8>,
+    /// A share for each pixel, gathered while shadows or a long line are drawn; all zero at other times.
+    mask: Vec<u8>,
 }
 
 impl Default for Canvas {
@@ -28,7 +28,7 @@ impl Default for Canvas {
             image: Image::new(0, 0, Color::TRANSPARENT),
             depth: Vec::new(),
             polygons: PolygonScan::default(),
-            shadow_mask: Vec::new(),
+            mask: Vec::new(),
         }
     }
 }
@@ -205,7 +205,7 @@ impl Surface {
 
 /// The nearest whole number to `value` in 0..=255. Adding 2²³ leaves no bits for a fraction, so the whole number
 /// stands in the low bits; unlike `as` this works on several numbers at a time.
-#[inline(always)]
+#[inline]
 pub(super) const fn to_byte(value: f32) -> u32 {
     (value + 8_388_608.0).to_bits() & 0xFF
 }
@@ -255,14 +255,13 @@ impl Canvas {
         self.image.reset(width, height, color);
         self.depth.clear();
         self.depth.resize(self.image.pixels().len(), FAR);
-        if self.shadow_mask.len() != self.depth.len() {
-            self.shadow_mask.clear();
-        }
+        // All zero, so a cut or a longer run of zeros is as good as new.
+        self.mask.truncate(self.depth.len());
     }
 
-    /// Scratch room for the floor's shadows: empty, or one zero for each pixel.
-    pub(super) fn shadow_mask(&mut self) -> &mut Vec<u8> {
-        &mut self.shadow_mask
+    /// Scratch room with zeros, to be given back so; as long as it needs to be or shorter.
+    pub(super) fn mask(&mut self) -> &mut Vec<u8> {
+        &mut self.mask
     }
 
     /// Width in pixels.
@@ -371,25 +370,64 @@ impl Canvas {
 
     /// Draws a line through world points; dashes run on over the corners. Points that are not finite leave a gap.
     pub fn polyline(&mut self, view: &View, points: &[DVec3], stroke: &Stroke) {
-        let mut dashed = 0.0;
-        for pair in points.windows(2) {
-            if let Some([(a, _), (b, _)]) = view.project_line(pair[0], pair[1]) {
-                let (a, b) = (Spot::new(view, &a), Spot::new(view, &b));
-                self.line_with(a, b, stroke, dashed, |_| 1.0);
-                dashed += a.pixel.distance(b.pixel);
-            }
-        }
+        let pieces = points.windows(2).filter_map(|pair| view.project_line(pair[0], pair[1]));
+        let pieces: Vec<[Spot; 2]> =
+            pieces.map(|[(a, _), (b, _)]| [Spot::new(view, &a), Spot::new(view, &b)]).collect();
+        self.strokes(&pieces, stroke);
     }
 
-    /// Draws a line through places of the picture (pixels), over everything.
+    /// Draws a line through places of the picture (pixels), over everything. Places that are not finite leave a gap.
     pub fn flat_polyline(&mut self, points: &[Vec2], stroke: &Stroke) {
-        let over = Stroke { hidden: Hidden::Shown, ..*stroke };
-        let mut dashed = 0.0;
-        for pair in points.windows(2) {
-            let spot = |pixel| Spot { pixel, key: 0.0 };
-            self.line_with(spot(pair[0]), spot(pair[1]), &over, dashed, |_| 1.0);
-            dashed += pair[0].distance(pair[1]);
+        let spot = |pixel| Spot { pixel, key: 0.0 };
+        let pieces: Vec<[Spot; 2]> = points
+            .windows(2)
+            .filter(|pair| pair[0].is_finite() && pair[1].is_finite())
+            .map(|pair| [spot(pair[0]), spot(pair[1])])
+            .collect();
+        self.strokes(&pieces, &Stroke { hidden: Hidden::Shown, ..*stroke });
+    }
+
+    /// Draws pieces that make up one line. Where pieces meet, the line is no darker than elsewhere: their covered
+    /// shares are gathered first (the larger counts) and inked once.
+    fn strokes(&mut self, pieces: &[[Spot; 2]], stroke: &Stroke) {
+        if let [[a, b]] = pieces {
+            self.line_with(*a, *b, stroke, 0.0, |_| 1.0);
+            return;
         }
+        let (width, height) = (self.width(), self.height());
+        let mut mask = std::mem::take(&mut self.mask);
+        mask.resize(width * height, 0);
+        let (mut low, mut high) = (Vec2::INFINITY, Vec2::NEG_INFINITY);
+        let radius = stroke.width.max(1.0) / 2.0;
+        let mut dashed_before = 0.0;
+        for [a, b] in pieces {
+            let length = a.pixel.distance(b.pixel);
+            scan_line(
+                [a.pixel, b.pixel],
+                radius,
+                [width, height],
+                |_| stroke.width.min(1.0),
+                |index, t, share| {
+                    let hidden = hidden_share(stroke.hidden, a.key + (b.key - a.key) * t, self.depth[index]);
+                    let dashed = stroke.dash.map_or(1.0, |dash| dash_share(dash, dashed_before + length * t));
+                    mask[index] = mask[index].max(to_byte(share * hidden * dashed * 255.0) as u8);
+                },
+            );
+            dashed_before += length;
+            low = low.min(a.pixel).min(b.pixel);
+            high = high.max(a.pixel).max(b.pixel);
+        }
+        let columns = pixel_span(low.x - radius - 1.0, high.x + radius + 1.0, width);
+        for row in pixel_span(low.y - radius - 1.0, high.y + radius + 1.0, height) {
+            let span = row * width + columns.start..row * width + columns.end;
+            for (pixel, share) in self.image.pixels_mut()[span.clone()].iter_mut().zip(&mut mask[span]) {
+                if *share > 0 {
+                    blend_pixel(pixel, stroke.color, f32::from(*share) / 255.0);
+                    *share = 0;
+                }
+            }
+        }
+        self.mask = mask;
     }
 
     /// Draws a round dot of `radius` pixels at a world point.

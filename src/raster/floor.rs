@@ -22,6 +22,14 @@ pub struct Floor {
 }
 
 impl Floor {
+    /// The same grid, its lines where they were, with its middle near `point`.
+    #[must_use]
+    pub fn moved_under(self, point: DVec3) -> Self {
+        let near = |own: f64, wanted: f64| own + ((wanted - own) / self.step).round() * self.step;
+        let center = DVec3::new(near(self.center.x, point.x), self.center.y, near(self.center.z, point.z));
+        Self { center, ..self }
+    }
+
     /// A floor under a thing of this size, with a round step (1, 2 or 5 times a power of ten) of about half its size.
     /// The lines stay at multiples of the step, so that they stand still while the thing walks over them.
     ///
@@ -117,7 +125,8 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
     }
     let (width, height) = (canvas.width(), canvas.height());
     let strength = if theme.is_dark() { 190.0 } else { 95.0 };
-    let mut mask = std::mem::take(canvas.shadow_mask());
+    let mut mask = std::mem::take(canvas.mask());
+    mask.resize(width * height, 0);
     let mut touched = (height, 0);
     for figure in figures {
         let size = figure.bounds().map_or(1.0, |bounds| bounds.size()).max(1e-9);
@@ -134,9 +143,6 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
             let darkness = strength / (1.0 + 9.0 * height_share.max(0.0)) as f32;
             let blur = 1.2 + 4.0 * height_share.max(0.0) as f32;
             let soft = (cone.shape.radius_a.max(cone.shape.radius_b) * blur).max(1.0);
-            if mask.is_empty() {
-                mask.resize(width * height, 0);
-            }
             let frame = cone.shape.frame();
             let inverse = 0.5 / soft;
             cone.shape.rows(&frame, width, height, soft, |row, columns, first| {
@@ -159,7 +165,7 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
             }
         }
     }
-    *canvas.shadow_mask() = mask;
+    *canvas.mask() = mask;
 }
 
 #[cfg(test)]

@@ -6,21 +6,29 @@
 
 mod camera;
 mod canvas;
+mod chart;
 mod disc;
 mod figure;
 mod floor;
 mod image;
 pub mod palette;
+mod plot;
 mod scene_view;
 mod shape;
+mod sheet;
 mod text;
+mod turn_map;
 
 pub use camera::{Bounds, Camera, Lens, Projection, Ray, StraightView, View};
 pub use canvas::{Canvas, Dash, Hidden, Stroke};
+pub use chart::{Area, Scale, SnagMark, decimal_step, degree_step, format_secs};
 pub use disc::{PlaneDisc, ReachCone};
 pub use figure::{Figure, FigureLimb, FigureStyle, Girth, limbs_of_skeleton};
 pub use floor::Floor;
 pub use image::{Image, ImageError};
 pub use palette::{Color, Theme, cividis};
+pub use plot::{Curve, Plot, ValueUnit, draw_plot};
 pub use scene_view::{Label, SceneView, TipPath, render, render_into};
+pub use sheet::{Moment, StripStyle, Tile, chart_canvas, compose, contact_strip};
 pub use text::{Align, Face, TextStyle, draw_text, draw_text_centered, elide, format_degrees, text_width};
+pub use turn_map::{MapRow, TurnMap, draw_turn_map, full_scale, heat_image, turn_map_height};

@@ -60,6 +60,7 @@ impl Color {
     }
 
     /// Black or white, whichever reads better on this colour.
+    #[must_use]
     pub fn readable_ink(self) -> Self {
         const INKS: [Color; 2] = [Color::rgb(0x00_00_00), Color::rgb(0xFF_FF_FF)];
         if self.contrast(INKS[0]) >= self.contrast(INKS[1]) { INKS[0] } else { INKS[1] }

@@ -138,7 +138,7 @@ impl ConeFrame {
     /// The outline is the two circles and their outer tangents. Between the tangents' feet the line from a pixel square
     /// to the tangent meets the axis at `t`, and the circle there touches the tangent on that very line; beyond them
     /// the nearest circle is an end's. So one formula serves both, without a branch.
-    #[inline(always)]
+    #[inline]
     pub(super) fn sample(&self, from_origin: Vec2) -> Sample {
         let along = from_origin.x * self.axis.x + from_origin.y * self.axis.y;
         let across = self.axis.x * from_origin.y - self.axis.y * from_origin.x;
@@ -366,7 +366,7 @@ mod tests {
                 let shape = cone(a, b, radius, radius);
                 let mut expected = vec![0.0; 100 * 100];
                 each_sample(&shape, 1.0, |index, sample| {
-                    expected[index] = (0.5 - sample.distance).clamp(0.0, 1.0)
+                    expected[index] = (0.5 - sample.distance).clamp(0.0, 1.0);
                 });
                 let mut found = vec![0.0; 100 * 100];
                 scan_line(
