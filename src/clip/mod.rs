@@ -3,11 +3,13 @@
 //! Knows nothing of files or screens. A clip read from a file is never changed; edits make a new one that shares
 //! what they did not touch.
 
+mod continuity;
 mod rotation_track;
 mod take;
 mod times;
 mod vector_track;
 
+pub use continuity::continuous_angles;
 pub use rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};
 pub use take::{Clip, FrameGrid, JointTracks};
 pub use times::{Place, Times};

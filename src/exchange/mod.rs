@@ -2,6 +2,7 @@
 //!
 //! Each format has a folder that turns bytes into clips and clips into bytes; [`disk`] alone touches files.
 
+pub mod bvh;
 pub mod disk;
 pub mod gltf;
 mod note;

@@ -2,6 +2,7 @@
 //!
 //! | module | what belongs there |
 //! |---|---|
+//! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
 //! | `gltf` | glTF and GLB files: reading, patching, the validator |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
@@ -11,6 +12,7 @@
 //! | `snags` | faults found and mended: built clips with one fault, and the real files with what is known of them |
 //! | `strategies` | the random values; no tests of its own |
 //! | `support` | where the outside files are, and comparing with a tolerance; no tests of its own |
+mod bvh;
 mod demo;
 mod gltf;
 mod rotor_checks;

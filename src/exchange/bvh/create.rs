@@ -1,0 +1,275 @@
+//! A new BVH text from any clip.
+
+use std::io::Write as _;
+
+use glam::DVec3;
+
+use crate::clip::{Clip, FrameGrid, Times, continuous_angles};
+use crate::exchange::Note;
+use crate::rotor::{EulerOrder, Rotor, slerp};
+use crate::skeleton::{JointKind, WorldJoint};
+
+/// Writes any clip as BVH: one row for each frame of its grid, channels Z X Y.
+///
+/// Joints stand parallel to the world at rest, so turns are written away from the rest pose in world axes and offsets are
+/// the rest limbs in world axes; carriers are taken into the joints below them. Roots have positions, and so has each
+/// joint whose distance to its parent is not the rest limb's all the time: every joint is where it was at every frame.
+/// Angles run on from frame to frame without whole turns or mirrored triples where there is a way round. Sizes are lost;
+/// uneven times are sampled at an even rate. Notes tell of both, with the largest difference.
+pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
+    let mut notes = Vec::new();
+    let skeleton = &clip.skeleton;
+    let (times, step_secs) = frame_times(&clip.grid, &mut notes);
+    let listed: Vec<usize> = skeleton.listed().collect();
+    let parents: Vec<Option<usize>> = (0..skeleton.len()).map(|joint| skeleton.parent_joint(joint)).collect();
+    let rest = skeleton.world(&skeleton.rest_pose());
+    let size = listed
+        .iter()
+        .map(|&joint| rest[joint].position().distance(rest[listed[0]].position()))
+        .fold(0.0_f64, f64::max);
+
+    let mut turns: Vec<Vec<Rotor>> = vec![Vec::with_capacity(times.len()); skeleton.len()];
+    let mut places: Vec<Vec<DVec3>> = vec![Vec::with_capacity(times.len()); skeleton.len()];
+    for &time in &times {
+        let world = clip.world_at(time);
+        for &joint in &listed {
+            let parent = parents[joint];
+            let away = |joint: usize| (world[joint].rotation * rest[joint].rotation.reverse()).normalize();
+            let parent_away = parent.map_or(Rotor::IDENTITY, away);
+            turns[joint].push((parent_away.reverse() * away(joint)).normalize());
+            places[joint].push(parent_away.reverse().apply(limb(&world, joint, parent)));
+        }
+    }
+    let moves: Vec<bool> = (0..skeleton.len())
+        .map(|joint| {
+            let own = limb(&rest, joint, parents[joint]);
+            let tolerance = 1e-6 * size.max(own.length());
+            parents[joint].is_none() || places[joint].iter().any(|place| place.distance(own) > tolerance)
+        })
+        .collect();
+
+    let decimals = length_decimals(size);
+    let mut bytes = Vec::new();
+    let text = Hierarchy { clip, rest: &rest, parents: &parents, moves: &moves, decimals };
+    let order = text.write(&mut bytes, &listed);
+    // Writing into a Vec can't fail.
+    let _ = write!(bytes, "MOTION\nFrames: {}\nFrame Time: {}\n", times.len(), frame_time_text(step_secs));
+    let angles: Vec<Vec<[f64; 3]>> =
+        order.iter().map(|&joint| continuous_angles(EulerOrder::ZXY, &turns[joint], [0.0; 3])).collect();
+    for frame in 0..times.len() {
+        let mut is_first = true;
+        let mut put = |value: f64, decimals: usize, bytes: &mut Vec<u8>| {
+            if !std::mem::take(&mut is_first) {
+                bytes.push(b' ');
+            }
+            // Adding 0 takes the sign from −0; a value may still round to it.
+            let text = format!("{:.decimals$}", value + 0.0);
+            let is_zero = text.bytes().all(|byte| matches!(byte, b'-' | b'0' | b'.'));
+            bytes.extend_from_slice(if is_zero { text.trim_start_matches('-') } else { &text }.as_bytes());
+        };
+        for (&joint, angles) in order.iter().zip(&angles) {
+            if moves[joint] {
+                for value in places[joint][frame].to_array() {
+                    put(value, decimals, &mut bytes);
+                }
+            }
+            for angle in angles[frame] {
+                put(angle.to_degrees(), 6, &mut bytes);
+            }
+        }
+        bytes.push(b'\n');
+    }
+    let inner: Vec<&str> = order
+        .iter()
+        .filter(|&&joint| moves[joint] && parents[joint].is_some())
+        .map(|&joint| skeleton.label(joint))
+        .collect();
+    if let Some(first) = inner.first() {
+        let text = format!(
+            "expected limbs of one length, found {} joints that move against their parents: written with positions",
+            inner.len()
+        );
+        notes.push(Note::new(format!("joint {first}"), text));
+    }
+    about_sizes(clip, &mut notes);
+    about_resampling(clip, &times, &mut notes);
+    (bytes, notes)
+}
+
+/// From the parent, or the scene's origin, to the joint, in world axes.
+fn limb(world: &[WorldJoint], joint: usize, parent: Option<usize>) -> DVec3 {
+    world[joint].position() - parent.map_or(DVec3::ZERO, |parent| world[parent].position())
+}
+
+/// The times that are sampled, evenly apart.
+fn frame_times(grid: &FrameGrid, notes: &mut Vec<Note>) -> (Vec<f64>, f64) {
+    let usual = if grid.rate.is_finite() && grid.rate > 0.0 { 1.0 / grid.rate } else { 1.0 / 30.0 };
+    match &grid.times {
+        Times::Even { step_secs, count } => ((0..*count).map(|frame| grid.time(frame)).collect(), *step_secs),
+        Times::Listed(times) => {
+            let (Some(&start), Some(&end)) = (times.first(), times.last()) else {
+                return (Vec::new(), usual);
+            };
+            if start != 0.0 {
+                let text = format!(
+                    "expected the first row at 0 s, found it at {start} s: all rows are moved to begin at 0"
+                );
+                notes.push(Note::new("times", text));
+            }
+            let even_secs = (end - start) / (times.len() - 1).max(1) as f64;
+            let off = |step: f64| {
+                let off = |(row, &time): (usize, &f64)| (time - start - row as f64 * step).abs();
+                times.iter().enumerate().map(off).fold(0.0, f64::max)
+            };
+            // Rows that are as even as their digits can tell are the frames.
+            if times.len() > 1 && off(even_secs) <= 0.02 * even_secs {
+                return (times.to_vec(), even_secs);
+            }
+            let count = ((end - start) / usual).round() as usize + 1;
+            let text = format!(
+                "expected evenly spaced rows, found {} uneven ones: sampled as {count} frames of {usual} s",
+                times.len()
+            );
+            notes.push(Note::new("times", text));
+            ((0..count).map(|frame| (start + frame as f64 * usual).min(end)).collect(), usual)
+        }
+    }
+}
+
+/// Enough digits to read the very same number again, and at least 9 significant ones.
+fn frame_time_text(step_secs: f64) -> String {
+    let shortest = step_secs.to_string();
+    let decimals = shortest.split('.').nth(1).map_or(0, str::len);
+    if decimals >= 10 { shortest } else { format!("{step_secs:.10}") }
+}
+
+/// Six decimals, and more where the whole skeleton is smaller than one unit.
+fn length_decimals(size: f64) -> usize {
+    let extra = if size > 0.0 && size < 1.0 { (-size.log10()).ceil() as usize } else { 0 };
+    6 + extra.min(9)
+}
+
+struct Hierarchy<'a> {
+    clip: &'a Clip,
+    rest: &'a [WorldJoint],
+    parents: &'a [Option<usize>],
+    moves: &'a [bool],
+    decimals: usize,
+}
+
+impl Hierarchy<'_> {
+    /// Writes all joints, and gives their order: each right before what hangs on it.
+    fn write(&self, bytes: &mut Vec<u8>, listed: &[usize]) -> Vec<usize> {
+        let mut children: Vec<Vec<usize>> = vec![Vec::new(); self.parents.len()];
+        let mut roots = Vec::new();
+        for &joint in listed {
+            match self.parents[joint] {
+                Some(parent) => children[parent].push(joint),
+                None => roots.push(joint),
+            }
+        }
+        bytes.extend_from_slice(b"HIERARCHY\n");
+        let mut order = Vec::with_capacity(listed.len());
+        // What is still to be written: a joint to open, or one to close, with its depth.
+        let mut open: Vec<(usize, usize, bool)> =
+            roots.into_iter().rev().map(|joint| (joint, 0, true)).collect();
+        while let Some((joint, depth, is_opening)) = open.pop() {
+            let indent = "\t".repeat(depth.min(64));
+            if !is_opening {
+                let _ = writeln!(bytes, "{indent}}}");
+                continue;
+            }
+            order.push(joint);
+            self.joint(bytes, joint, &indent, children[joint].is_empty());
+            open.push((joint, depth, false));
+            open.extend(children[joint].iter().rev().map(|&child| (child, depth + 1, true)));
+        }
+        order
+    }
+
+    fn joint(&self, bytes: &mut Vec<u8>, joint: usize, indent: &str, is_leaf: bool) {
+        let skeleton = &self.clip.skeleton;
+        let keyword = if self.parents[joint].is_some() { "JOINT" } else { "ROOT" };
+        // A name ends at its line or at the brace.
+        let name: String = skeleton
+            .label(joint)
+            .chars()
+            .map(|c| if c.is_control() || matches!(c, '{' | '}') { '_' } else { c })
+            .collect();
+        let _ = writeln!(bytes, "{indent}{keyword} {name}\n{indent}{{");
+        let offset = self.vector(limb(self.rest, joint, self.parents[joint]));
+        let _ = writeln!(bytes, "{indent}\tOFFSET {offset}");
+        let channels = if self.moves[joint] {
+            "6 Xposition Yposition Zposition Zrotation Xrotation Yrotation"
+        } else {
+            "3 Zrotation Xrotation Yrotation"
+        };
+        let _ = writeln!(bytes, "{indent}\tCHANNELS {channels}");
+        let own = &self.rest[joint];
+        let tips: Vec<DVec3> = skeleton.joints()[joint]
+            .tips
+            .iter()
+            .map(|&tip| own.scene_from_joint.transform_vector3(tip))
+            .collect();
+        let tips = if is_leaf && tips.is_empty() { vec![DVec3::ZERO] } else { tips };
+        for tip in tips {
+            let tip = self.vector(tip);
+            let _ =
+                writeln!(bytes, "{indent}\tEnd Site\n{indent}\t{{\n{indent}\t\tOFFSET {tip}\n{indent}\t}}");
+        }
+    }
+
+    fn vector(&self, v: DVec3) -> String {
+        let decimals = self.decimals;
+        // Adding 0 takes the sign from −0.
+        let [x, y, z] = v.to_array().map(|part| part + 0.0);
+        format!("{x:.decimals$} {y:.decimals$} {z:.decimals$}")
+    }
+}
+
+fn about_sizes(clip: &Clip, notes: &mut Vec<Note>) {
+    let skeleton = &clip.skeleton;
+    let is_sized = |joint: usize| {
+        let rest = skeleton.joints()[joint].rest.scale;
+        let keys = clip.joints[joint].scale.iter().flat_map(|track| track.keys.iter());
+        keys.chain([&rest]).any(|size| size.distance(DVec3::ONE) > 1e-4)
+    };
+    let of_kind = |kind: JointKind| {
+        (0..skeleton.len()).find(|&joint| skeleton.joints()[joint].kind == kind && is_sized(joint))
+    };
+    if let Some(joint) = of_kind(JointKind::Joint) {
+        let text = "expected no sizes, as BVH has none, found some: left out; the joints' places keep them";
+        notes.push(Note::new(format!("joint {}", skeleton.label(joint)), text));
+    }
+}
+
+/// How far the frames, with the short way between them, are from the clip's own keys and the middles between them.
+fn about_resampling(clip: &Clip, times: &[f64], notes: &mut Vec<Note>) {
+    if times.is_empty() {
+        return;
+    }
+    let mut worst: Option<(f64, usize, f64)> = None;
+    for joint in clip.skeleton.listed() {
+        let Some(track) = clip.rotation(joint).filter(|track| !track.times.is_empty()) else { continue };
+        let frames: Vec<Rotor> = times.iter().map(|&time| track.at(time)).collect();
+        let keys = (0..track.times.len()).map(|key| track.times.at(key));
+        let middles = (1..track.times.len()).map(|key| 0.5 * (track.times.at(key - 1) + track.times.at(key)));
+        for time in keys.chain(middles) {
+            let after = times.partition_point(|&frame| frame <= time);
+            let (Some(&end), Some(before)) = (times.get(after), after.checked_sub(1)) else { continue };
+            let share = (time - times[before]) / (end - times[before]);
+            let written = slerp(frames[before], frames[after], share).normalize();
+            let off = written.turn_to(track.at(time));
+            if worst.is_none_or(|(most, ..)| off > most) {
+                worst = Some((off, joint, time));
+            }
+        }
+    }
+    if let Some((off, joint, time)) = worst.filter(|&(off, ..)| off.to_degrees() > 0.01) {
+        let text = format!(
+            "expected keys at the frames, found some between: up to {:.3} degrees off, at {time:.4} s",
+            off.to_degrees()
+        );
+        notes.push(Note::new(format!("joint {}", clip.skeleton.label(joint)), text));
+    }
+}

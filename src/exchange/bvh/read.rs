@@ -1,0 +1,416 @@
+//! From the bytes of a BVH file to a clip.
+
+use std::fmt;
+use std::sync::Arc;
+
+use glam::DVec3;
+
+use crate::clip::{Clip, FileAngles, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
+use crate::exchange::Note;
+use crate::rotor::{Axis, Rotor};
+use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
+
+use super::error::{BvhError, BvhErrorKind};
+use super::layout::Turns;
+use super::scanner::{Scanner, is_line_end, quoted};
+use super::syntax::{Channel, JointSyntax, MotionHead, hierarchy, motion_head, skip_comments};
+
+/// Seconds from frame to frame where a file does not say.
+const USUAL_FRAME_SECS: f64 = 1.0 / 30.0;
+
+/// What is kept of a file so that it can be written again without touching what did not change.
+#[derive(Clone)]
+pub struct Document {
+    /// The file as it was.
+    pub(super) bytes: Arc<[u8]>,
+    /// The channels of each joint, in the order of a row's numbers.
+    pub(super) channels: Vec<Vec<Channel>>,
+    /// Where the motion part stands.
+    pub(super) head: Option<MotionHead>,
+    /// First byte after its head.
+    pub(super) rows_start: usize,
+    /// Complete frames that were read.
+    pub(super) frames: usize,
+    /// Numbers have a comma where others have a point.
+    pub(super) decimal_comma: bool,
+}
+
+impl fmt::Debug for Document {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.debug_struct("Document")
+            .field("bytes", &self.bytes.len())
+            .field("joints", &self.channels.len())
+            .field("frames", &self.frames)
+            .finish_non_exhaustive()
+    }
+}
+
+impl Document {
+    /// Numbers of one frame.
+    pub(super) fn columns(&self) -> usize {
+        self.channels.iter().map(Vec::len).sum()
+    }
+
+    /// First column of each joint.
+    pub(super) fn first_columns(&self) -> Vec<usize> {
+        let mut next = 0;
+        let start = |channels: &Vec<Channel>| {
+            let start = next;
+            next += channels.len();
+            start
+        };
+        self.channels.iter().map(start).collect()
+    }
+}
+
+/// Reads a BVH text. `name` becomes the clip's name.
+///
+/// Angles are degrees, applied in the order of the channels; frame `i` is at `i` × `Frame Time` as written. Positions
+/// stand in place of `OFFSET`; of a joint that lacks some of the three, the others stay those of `OFFSET`. Numbers that
+/// are not finite become NaN. A file whose hierarchy is followed by no motion gives a clip of no frames.
+///
+/// # Errors
+/// When the text is no BVH or can't be understood in one way only; with line and column, and in the motion part with
+/// frame and joint.
+pub fn read(bytes: &[u8], name: &str) -> Result<(Document, Clip, Vec<Note>), BvhError> {
+    let mut notes = Vec::new();
+    let body_start = if bytes.starts_with(b"\xEF\xBB\xBF") { 3 } else { 0 };
+    let mut scanner = Scanner::new(bytes, body_start);
+    if u32::try_from(bytes.len()).is_err() {
+        return Err(scanner.error(0, BvhErrorKind::TooLarge(bytes.len())));
+    }
+    let joints = hierarchy(&mut scanner, &mut notes)?;
+    let head = motion_head(&mut scanner, &mut notes)?;
+    let rows_start = scanner.pos();
+    let mut document = Document {
+        bytes: bytes.into(),
+        channels: joints.iter().map(|joint| joint.channels.clone()).collect(),
+        head,
+        rows_start,
+        frames: 0,
+        decimal_comma: false,
+    };
+    let values = if let Some(head) = &head {
+        rows(&mut scanner, &document, &joints, head, &mut notes)?
+    } else {
+        notes.push(Note::new("end of file", "expected MOTION, found none: a skeleton without a clip"));
+        Vec::new()
+    };
+    document.frames = values.len().checked_div(document.columns()).unwrap_or(0);
+    decimal_marks(&scanner, &mut document, &mut notes)?;
+    let step_secs = frame_secs(&scanner, head.as_ref(), &mut notes);
+    about_numbers(&scanner, &document, &joints, &values, &mut notes);
+    let clip = clip(&document, &joints, &values, step_secs, name, &mut notes);
+    Ok((document, clip, notes))
+}
+
+/// All numbers of the complete frames.
+fn rows(
+    scanner: &mut Scanner<'_>,
+    document: &Document,
+    joints: &[JointSyntax],
+    head: &MotionHead,
+    notes: &mut Vec<Note>,
+) -> Result<Vec<f64>, BvhError> {
+    let columns = document.columns();
+    let rest = document.bytes.len() - document.rows_start;
+    let announced = head.frames.unwrap_or(0);
+    // A number takes a digit and a blank at least: what a file announces beyond that it can't have.
+    let mut values = Vec::with_capacity(announced.saturating_mul(columns).min(rest / 2 + 1));
+    loop {
+        match scanner.number() {
+            Ok(Some(number)) if columns > 0 => values.push(number.value),
+            Ok(Some(number)) => {
+                let text = "expected no numbers, as no joint has channels, found some: left out";
+                notes.push(Note::new(scanner.line_of(number.start), text));
+                break;
+            }
+            Ok(None) => break,
+            Err(()) => {
+                let start = scanner.pos();
+                skip_comments(scanner, notes);
+                if scanner.pos() != start {
+                    continue;
+                }
+                let frames = values.len().checked_div(columns).unwrap_or(announced);
+                let is_between_frames = columns == 0 || values.len() % columns == 0;
+                if is_between_frames && frames >= announced && frames > 0 {
+                    let text = format!(
+                        "expected the end of the file after {frames} frames, found {}: left as it is",
+                        scanner.found()
+                    );
+                    notes.push(Note::new(scanner.line_of(start), text));
+                    break;
+                }
+                let error = scanner.unexpected("a number");
+                return Err(in_motion(error, values.len(), document, joints));
+            }
+        }
+    }
+    let complete = values.len().checked_div(columns).unwrap_or(0);
+    let left_over = values.len() - complete * columns;
+    if left_over > 0 {
+        uneven_line(document, joints, scanner.pos())?;
+        let text = format!("expected {columns} numbers, found {left_over}: the frame is left out");
+        notes.push(Note::new(format!("frame {complete}"), text));
+        values.truncate(complete * columns);
+    }
+    match head.frames {
+        None => notes.push(Note::new(
+            scanner.line_of(head.start),
+            format!("expected `Frames:`, found none: the numbers make {complete} frames"),
+        )),
+        Some(count) if count != complete && columns > 0 => notes.push(Note::new(
+            scanner.line_of(head.frames_text.unwrap_or_default().0),
+            format!("expected {count} frames as `Frames:` says, found {complete}: those are used"),
+        )),
+        Some(_) => {}
+    }
+    Ok(values)
+}
+
+/// The error with the frame and the joint that number `index` of the motion belongs to.
+fn in_motion(error: BvhError, index: usize, document: &Document, joints: &[JointSyntax]) -> BvhError {
+    let columns = document.columns();
+    let Some(frame) = index.checked_div(columns) else { return error };
+    let column = index % columns;
+    let owner = document.first_columns().iter().rposition(|&first| first <= column);
+    // Joints without channels begin at the same column as the one after them, which is the one found.
+    let joint = owner.and_then(|joint| joints.get(joint)).map(|joint| joint.name.clone());
+    BvhError { frame: Some(frame), joint, ..error }
+}
+
+/// Numbers are counted, not lines. But where nearly every line holds one frame, a line that does not has lost or gained
+/// a number, and all that follows would go to the wrong joints.
+///
+/// # Errors
+/// At the first such line, unless it is the last.
+fn uneven_line(document: &Document, joints: &[JointSyntax], end: usize) -> Result<(), BvhError> {
+    let columns = document.columns();
+    let mut scanner = Scanner::new(document.bytes.get(..end).unwrap_or_default(), document.rows_start);
+    let (mut lines, mut even, mut first_uneven) = (0_usize, 0_usize, None);
+    let (mut in_line, mut before, mut last_end) = (0_usize, 0_usize, document.rows_start);
+    let mut is_last_uneven = false;
+    loop {
+        let number = scanner.number().ok().flatten();
+        let gap = number.map(|number| &document.bytes[last_end..number.start]);
+        if gap.is_none_or(|gap| gap.iter().copied().any(is_line_end)) && in_line > 0 {
+            lines += 1;
+            is_last_uneven = false;
+            if in_line == columns {
+                even += 1;
+            } else if first_uneven.is_none() {
+                first_uneven = Some((last_end, in_line, before));
+                is_last_uneven = true;
+            }
+            before += in_line;
+            in_line = 0;
+        }
+        let Some(number) = number else { break };
+        in_line += 1;
+        last_end = number.end;
+    }
+    match first_uneven {
+        Some((at, found, before)) if even * 2 > lines && !is_last_uneven => {
+            let kind = BvhErrorKind::Unexpected {
+                expected: format!("{columns} numbers on the line, one for each channel"),
+                found: found.to_string(),
+            };
+            let index = before + found.min(columns - 1);
+            Err(in_motion(scanner.error(at, kind), index, document, joints))
+        }
+        _ => Ok(()),
+    }
+}
+
+/// A comma is a decimal mark only in a file that has no other.
+fn decimal_marks(
+    scanner: &Scanner<'_>,
+    document: &mut Document,
+    notes: &mut Vec<Note>,
+) -> Result<(), BvhError> {
+    let commas = scanner.oddities.commas;
+    if commas.count == 0 {
+        return Ok(());
+    }
+    if scanner.oddities.points.count > 0 {
+        let rest = document.bytes.get(commas.first..).unwrap_or_default();
+        let length = rest.iter().position(|&byte| super::scanner::is_blank(byte)).unwrap_or(rest.len());
+        let kind = BvhErrorKind::TwoDecimalMarks(quoted(&rest[..length]).trim_matches('`').to_owned());
+        return Err(scanner.error(commas.first, kind));
+    }
+    document.decimal_comma = true;
+    let text = format!("expected decimal points, found {} decimal commas: read as points", commas.count);
+    notes.push(Note::new(scanner.line_of(commas.first), text));
+    Ok(())
+}
+
+/// Seconds from frame to frame.
+fn frame_secs(scanner: &Scanner<'_>, head: Option<&MotionHead>, notes: &mut Vec<Note>) -> f64 {
+    let Some(head) = head else { return USUAL_FRAME_SECS };
+    match head.frame_secs {
+        Some(secs) if (1e-6..=3600.0).contains(&secs) => secs,
+        found => {
+            let place = scanner.line_of(head.frame_secs_text.map_or(head.start, |(start, _)| start));
+            let found = found.map_or("none".to_owned(), |secs| format!("{secs}"));
+            let text = format!("expected a `Frame Time:` above 0, found {found}: 1/30 s is taken");
+            notes.push(Note::new(place, text));
+            USUAL_FRAME_SECS
+        }
+    }
+}
+
+fn about_numbers(
+    scanner: &Scanner<'_>,
+    document: &Document,
+    joints: &[JointSyntax],
+    values: &[f64],
+    notes: &mut Vec<Note>,
+) {
+    let run_together = scanner.oddities.run_together;
+    if run_together.count > 0 {
+        let text = format!(
+            "expected blanks between numbers, found {} run together: split before the sign",
+            run_together.count
+        );
+        notes.push(Note::new(scanner.line_of(run_together.first), text));
+    }
+    let missing = values.iter().filter(|value| value.is_nan()).count();
+    if missing > 0 {
+        let text = format!("expected finite numbers, found {missing} that are not: those are missing");
+        notes.push(Note::new(scanner.line_of(scanner.oddities.missing.first), text));
+    }
+    let angle_columns: Vec<bool> =
+        document.channels.iter().flatten().map(|channel| matches!(channel, Channel::Rotation(_))).collect();
+    if angle_columns.iter().filter(|&&is_angle| is_angle).count() >= 9 && document.frames >= 8 {
+        let largest = values
+            .chunks_exact(angle_columns.len())
+            .flat_map(|row| row.iter().zip(&angle_columns))
+            .filter(|&(_, &is_angle)| is_angle)
+            .fold(0.0_f64, |largest, (value, _)| largest.max(value.abs()));
+        if largest > 0.1 && largest < 7.0 {
+            let text = format!("expected degrees, found no angle above {largest:.2}: these may be radians");
+            notes.push(Note::new("motion", text));
+        }
+    }
+    if joints.len() > 2 && joints[1..].iter().all(|joint| joint.offset == [0.0; 3]) {
+        let places = |joint: &JointSyntax| joint.channels.iter().any(|c| matches!(c, Channel::Position(_)));
+        if !joints[1..].iter().any(places) {
+            notes.push(Note::new("hierarchy", "expected limbs with a length, found every OFFSET 0"));
+        }
+    }
+}
+
+fn clip(
+    document: &Document,
+    joints: &[JointSyntax],
+    values: &[f64],
+    step_secs: f64,
+    name: &str,
+    notes: &mut Vec<Note>,
+) -> Clip {
+    let columns = document.columns();
+    let times = Times::Even { step_secs, count: document.frames };
+    let rows = || values.chunks_exact(columns.max(1));
+    let mut tracks = Vec::with_capacity(joints.len());
+    for (joint, first) in joints.iter().zip(document.first_columns()) {
+        let turns = Turns::new(&joint.channels);
+        if turns.groups.len() > 3 {
+            let axes: String = turns.axes().map(Axis::letter).collect();
+            let text = format!("expected at most three turns, found {axes}: put together in this order");
+            notes.push(Note::new(format!("joint {}", joint.name), text));
+        }
+        let angles = |row: &[f64]| -> [f64; 3] {
+            std::array::from_fn(|i| {
+                turns.groups.get(i).map_or(0.0, |(_, columns)| group_sum(row, first, columns))
+            })
+        };
+        let rotation = match turns.order() {
+            _ if document.frames == 0 => None,
+            None => None,
+            Some(order) if turns.groups.len() <= 3 => {
+                let degrees: Arc<[[f64; 3]]> = rows().map(angles).collect();
+                let axes = turns.axes().collect();
+                Some(RotationTrack::from_angles(times.clone(), FileAngles { axes, order, degrees }))
+            }
+            Some(_) => {
+                let mut before = Rotor::IDENTITY;
+                let mut key = |row: &[f64]| {
+                    let degrees: Vec<f64> =
+                        turns.groups.iter().map(|(_, c)| group_sum(row, first, c)).collect();
+                    let rotor = turns.rotor(&degrees).aligned_to(before);
+                    if rotor.is_finite() {
+                        before = rotor;
+                    }
+                    rotor
+                };
+                let keys: Arc<[Rotor]> = rows().map(&mut key).collect();
+                Some(RotationTrack::from_rotors(times.clone(), keys))
+            }
+        };
+        let places: Vec<(usize, usize)> = joint
+            .channels
+            .iter()
+            .enumerate()
+            .filter_map(|(column, channel)| match channel {
+                Channel::Position(axis) => Some((axis.index(), first + column)),
+                Channel::Rotation(_) | Channel::Size => None,
+            })
+            .collect();
+        let place = |row: &[f64]| {
+            let mut place = joint.offset;
+            for &(axis, column) in &places {
+                place[axis] = row[column];
+            }
+            DVec3::from_array(place)
+        };
+        let translation = (!places.is_empty() && document.frames > 0).then(|| {
+            let keys: Arc<[DVec3]> = rows().map(place).collect();
+            VectorTrack::straight(times.clone(), keys)
+        });
+        tracks.push(Arc::new(JointTracks { rotation, translation, scale: None }));
+    }
+    let skeleton_joints = joints
+        .iter()
+        .enumerate()
+        .map(|(number, joint)| Joint {
+            name: joint.name.clone(),
+            number,
+            parent: joint.parent,
+            rest: Transform::from_translation(DVec3::from_array(joint.offset)),
+            kind: JointKind::Joint,
+            tips: joint.tips.iter().copied().map(DVec3::from_array).collect(),
+        })
+        .collect();
+    let skeleton = Skeleton::new(skeleton_joints).expect("the reader lists parents before their children");
+    added_places(&skeleton, &tracks, notes);
+    Clip {
+        name: name.to_owned(),
+        skeleton: Arc::new(skeleton),
+        joints: tracks,
+        duration_secs: times.span().map_or(0.0, |(_, last)| last),
+        grid: FrameGrid { times, rate: 1.0 / step_secs },
+    }
+}
+
+fn group_sum(row: &[f64], first: usize, columns: &[usize]) -> f64 {
+    columns.iter().map(|column| row[first + column]).sum()
+}
+
+/// A few programs mean positions as an addition to `OFFSET`: it shows where an inner joint's stay near 0 and its OFFSET
+/// does not.
+fn added_places(skeleton: &Skeleton, tracks: &[Arc<JointTracks>], notes: &mut Vec<Note>) {
+    for (index, (joint, tracks)) in skeleton.joints().iter().zip(tracks).enumerate() {
+        let (Some(_), Some(track)) = (joint.parent, &tracks.translation) else { continue };
+        let offset = joint.rest.translation.length();
+        let mut lengths: Vec<f64> = track.keys.iter().map(|place| place.length()).collect();
+        let middle = lengths.len() / 2;
+        let median = *lengths.select_nth_unstable_by(middle, f64::total_cmp).1;
+        if offset > 0.0 && median < 0.05 * offset {
+            let text = format!(
+                "expected positions in place of OFFSET, found them near 0 beside an OFFSET of length {offset:.4}: they may be meant as an addition"
+            );
+            notes.push(Note::new(format!("joint {}", skeleton.label(index)), text));
+        }
+    }
+}
