@@ -6,6 +6,7 @@
 mod bivector;
 mod cumulative;
 mod euler;
+mod filter;
 mod interpolate;
 mod matrix;
 mod mean;
@@ -17,6 +18,7 @@ mod swing_twist;
 pub use bivector::Bivector;
 pub use cumulative::{b_spline, hermite};
 pub use euler::{Axis, EulerOrder, NoEulerOrder};
+pub use filter::{KernelError, convolve};
 pub use interpolate::{
     mean_rate, nlerp, parabola_rate, slerp, slerp_as_signed, squad, squad_inner, squad_inner_uneven,
 };

@@ -6,7 +6,7 @@ use glam::{DMat3, DVec3};
 use serde_json::Value;
 use turnwright::rotor::{
     Axis, Bivector, EndRates, EulerOrder, RotationSpline, Rotor, SwingTwist, b_spline, chordal_mean,
-    geodesic_mean, hermite, nlerp, parabola_rate, slerp, slerp_as_signed, squad, squad_inner,
+    convolve, geodesic_mean, hermite, nlerp, parabola_rate, slerp, slerp_as_signed, squad, squad_inner,
     squad_inner_uneven,
 };
 
@@ -286,6 +286,32 @@ fn cos_product() {
     assert_close!(split.swing_rad().to_degrees(), swing_deg, TOLERANCE);
     assert_close!(split.twist_rad.to_degrees(), twist_deg, TOLERANCE);
     assert_close!(split.certainty, (0.5 * swing_deg.to_radians()).cos(), TOLERANCE);
+}
+
+#[test]
+fn orientation_filter() {
+    // Section 14: Lee & Shin 2002. About one axis it is the convolution of the angle.
+    let Some(checks) = method_checks() else { return };
+    let check = &checks["orientation_filter"];
+    let kernel: [f64; 5] = numbers(&check["kernel"]);
+    let rotors: Vec<Rotor> = list(&check["z_deg_in"]).iter().map(|deg| turn(number(deg), DVec3::Z)).collect();
+    let found = convolve(&rotors, &kernel).expect("a sound kernel");
+    assert_eq!(found.len(), rotors.len());
+    let expected: [f64; 3] = numbers(&check["z_deg_out_frames_2_4"]);
+    assert_close!([2, 3, 4].map(|i: usize| found[i].plane_angles().to_degrees()[2]), expected, TOLERANCE);
+}
+
+#[test]
+fn orientation_filter_3d() {
+    // Section 14: Lee & Shin 2002.
+    let Some(checks) = method_checks() else { return };
+    let check = &checks["orientation_filter_3d"];
+    let degrees = [0.0, 10.0, 20.0, 33.0, 40.0, 50.0, 60.0];
+    let rotors = degrees.map(|v| turn(v, DVec3::new(1.0, 2.0, 0.0)) * turn(3.0 * v, DVec3::Z));
+    assert_close!(rotors[3], unit_rotor(&check["in_frame_3"]), TOLERANCE);
+    let found = convolve(&rotors, &numbers::<3>(&check["kernel"])).expect("a sound kernel");
+    assert_close!(found[3], unit_rotor(&check["out_frame_3"]), TOLERANCE);
+    assert_close!(found[3].turn_to(rotors[3]).to_degrees(), number(&check["moved_deg"]), TOLERANCE);
 }
 
 #[test]

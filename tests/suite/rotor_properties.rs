@@ -6,8 +6,8 @@ use glam::{DMat3, DVec3};
 use proptest::prelude::*;
 use proptest::test_runner::RngSeed;
 use turnwright::rotor::{
-    Axis, Bivector, EndRates, EulerOrder, RotationSpline, Rotor, SwingTwist, chordal_mean, geodesic_mean,
-    hermite, slerp, slerp_as_signed, squad, squad_inner,
+    Axis, Bivector, EndRates, EulerOrder, RotationSpline, Rotor, SwingTwist, chordal_mean, convolve,
+    geodesic_mean, hermite, slerp, slerp_as_signed, squad, squad_inner,
 };
 
 use crate::strategies::{angle, euler_order, tiny, two_rotors, two_vectors, unit_rotor, unit_vector};
@@ -109,7 +109,7 @@ proptest! {
     fn normalising_works_at_any_size(rotor in unit_rotor(), power in -1074..1000_i32) {
         let scaled = rotor.scale(2_f64.powi(power / 2)).scale(2_f64.powi(power - power / 2));
         // Below the normal numbers digits are lost before the normalising.
-        let tolerance = if power < -1020 { 2_f64.powi(-1072 - power).min(10.0) } else { ROUNDING };
+        let tolerance = 2_f64.powi(-1072 - power).clamp(ROUNDING, 10.0);
         let unit = scaled.try_normalize();
         assert_eq!(unit.is_none(), [scaled.s, scaled.yz, scaled.zx, scaled.xy] == [0.0; 4]);
         if let Some(unit) = unit {
@@ -288,6 +288,28 @@ proptest! {
     }
 
     #[test]
+    fn filtering_knows_no_frame_and_no_direction_of_time(
+        steps in prop::collection::vec((unit_vector(), -1.5..1.5_f64, any::<bool>()), 0..9),
+        left in unit_rotor(),
+        right in unit_rotor(),
+    ) {
+        let mut rotors = vec![Rotor::IDENTITY];
+        for (axis, angle, opposite) in steps {
+            let next = rotors[rotors.len() - 1] * Rotor::from_plane_angles(Bivector::from_axis(axis * angle));
+            rotors.push(if opposite { -next } else { next });
+        }
+        let smooth = |rotors: &[Rotor]| convolve(rotors, &[0.0625, 0.25, 0.375, 0.25, 0.0625]).expect("a sound kernel");
+        let found = smooth(&rotors);
+        let turned: Vec<Rotor> = rotors.iter().map(|rotor| left * *rotor * right).collect();
+        let backwards: Vec<Rotor> = rotors.iter().rev().copied().collect();
+        let (turned, backwards) = (smooth(&turned), smooth(&backwards));
+        for (i, rotor) in found.iter().enumerate() {
+            assert_close!(turned[i], left * *rotor * right, 1e-14);
+            assert_close!(backwards[rotors.len() - 1 - i], *rotor, 1e-14);
+        }
+    }
+
+    #[test]
     fn hermite_meets_keys_and_rates(a in unit_rotor(), step in unit_rotor(), rates in prop::array::uniform2((unit_vector(), 0.0..1.0_f64))) {
         let b = a * step.pow(0.5);
         let [rate_a, rate_b] = rates.map(|(axis, rate)| Bivector::from_axis(axis * rate));
@@ -298,6 +320,19 @@ proptest! {
         let rate = |from: f64, to: f64| (curve(from).reverse() * curve(to)).plane_angles() / dt;
         assert_close!(rate(0.0, dt), rate_a, 1e-4);
         assert_close!(rate(1.0 - dt, 1.0), rate_b, 1e-4);
+    }
+
+    #[test]
+    fn a_spline_settles_for_steps_up_to_160_degrees(
+        steps in prop::collection::vec((unit_vector(), 0.0..2.8_f64, 0.05..1.0_f64), 1..14),
+    ) {
+        let (mut keys, mut times) = (vec![Rotor::IDENTITY], vec![0.0]);
+        for (axis, angle, secs) in steps {
+            keys.push(keys[keys.len() - 1] * Rotor::from_plane_angles(Bivector::from_axis(axis * angle)));
+            times.push(times[times.len() - 1] + secs);
+        }
+        let spline = RotationSpline::new(&times, &keys, EndRates::Secant).expect("settled rates");
+        assert!(times.iter().all(|&t| spline.acceleration(t).is_finite()));
     }
 
     #[test]
@@ -410,6 +445,39 @@ fn a_spline_says_what_is_wrong_with_its_keys() {
         &[id, half_turn],
         "expected less than half a turn from key 0 to the next, found 3.141592653589793 rad",
     );
+}
+
+#[test]
+fn filtering_moves_nothing_that_it_should_not() {
+    let check = |rotors: &[Rotor], kernel: &[f64], expected: &[Rotor]| {
+        let found = convolve(rotors, kernel).expect("a sound kernel");
+        assert_eq!(found.len(), expected.len());
+        for (found, expected) in found.iter().zip(expected) {
+            assert_close!(*found, *expected, ROUNDING);
+        }
+    };
+    let wide = [1.0 / 9.0; 9];
+    let even_turn = [0.1, 0.2, 0.3, 0.4].map(|angle| Axis::X.rotor(angle));
+    check(&[], &wide, &[]);
+    check(&even_turn[..1], &wide, &even_turn[..1]);
+    check(&even_turn, &[1.0], &even_turn);
+    // The mirrored steps carry an even turn on beyond both ends.
+    check(&even_turn, &wide, &even_turn);
+    check(&[even_turn[0]; 3], &wide, &[even_turn[0]; 3]);
+    // A kernel that takes the frame before delays by one, with the first step carried on before the first frame.
+    let delayed = [0.0, 0.1, 0.2, 0.3].map(|angle| Axis::X.rotor(angle));
+    check(&even_turn, &[1.0, 0.0, 0.0], &delayed);
+}
+
+#[test]
+fn a_filter_says_what_is_wrong_with_its_kernel() {
+    let check = |kernel: &[f64], expected: &str| {
+        assert_eq!(convolve(&[Rotor::IDENTITY], kernel).expect_err(expected).to_string(), expected);
+    };
+    check(&[], "expected a kernel of odd length, found length 0");
+    check(&[0.5, 0.5], "expected a kernel of odd length, found length 2");
+    check(&[0.25, 0.25, 0.25], "expected a kernel with finite weights that add up to 1, found the sum 0.75");
+    check(&[f64::NAN], "expected a kernel with finite weights that add up to 1, found the sum NaN");
 }
 
 #[test]
