@@ -1,0 +1,22 @@
+//! Proof: what changed between two clips, measured, and the sheet that tells it.
+//!
+//! Measures clips as they play; whoever calls reads the written file back first. Draws no pictures of its own: those
+//! come in as PNG bytes.
+
+mod curve_svg;
+mod curves;
+mod error;
+mod measure;
+mod rates;
+mod sheet;
+mod sheet_html;
+mod sheet_json;
+mod untouched;
+
+pub use curves::{JointCurves, joint_curves};
+pub use error::ProofError;
+pub use measure::{JointMeasure, Measurement, TipMeasure, measure};
+pub use rates::{Peak, RateMeasure, rates};
+pub use sheet::{CAUTION, ClipProof, FileFacts, FoundSnag, Sheet, SheetPicture};
+pub use sheet_html::sheet_html;
+pub use sheet_json::sheet_json;

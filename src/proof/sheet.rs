@@ -1,0 +1,135 @@
+//! What a proof sheet tells, before it takes a form.
+
+use crate::snag::{Snag, SnagKind};
+
+use super::curves::JointCurves;
+use super::measure::Measurement;
+
+/// The caution that stands on every sheet.
+pub const CAUTION: &str = "Exported curves that drive a machine need that machine's own limits and guarding, local \
+                           safety codes and a licensed or qualified person.";
+
+/// One of the two files.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct FileFacts {
+    /// Its path as it was given.
+    pub file: String,
+    /// SHA-256 of its bytes, hexadecimal.
+    pub sha256: String,
+}
+
+/// A snag that was found, and whether it is still there.
+#[derive(Clone, Debug, PartialEq)]
+pub struct FoundSnag {
+    /// Its kind.
+    pub kind: SnagKind,
+    /// Label of its joint.
+    pub joint: String,
+    /// First and last frame.
+    pub frames: [usize; 2],
+    /// Time of both, seconds.
+    pub secs: [f64; 2],
+    /// Its size, radians.
+    pub size_rad: f64,
+    /// A plain sentence.
+    pub text: String,
+    /// Whether the clip after is free of it.
+    pub gone: bool,
+}
+
+/// A picture to stand on the sheet, as PNG bytes.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct SheetPicture {
+    /// Heading.
+    pub title: String,
+    /// What it shows.
+    pub caption: String,
+    /// For a light page and for print.
+    pub light_png: Vec<u8>,
+    /// For a dark page.
+    pub dark_png: Vec<u8>,
+}
+
+/// What changed in one clip.
+#[derive(Clone, Debug, PartialEq)]
+pub struct ClipProof {
+    /// Its name, or `#INDEX` without one.
+    pub label: String,
+    /// Its index in the file before.
+    pub index: usize,
+    /// What changed.
+    pub measurement: Measurement,
+    /// Snags of the clip before.
+    pub found: Vec<FoundSnag>,
+    /// Snags of the clip after that were not in the clip before.
+    pub new: Vec<FoundSnag>,
+    /// Curves of the joints that changed most.
+    pub curves: Vec<JointCurves>,
+    /// Pictures.
+    pub pictures: Vec<SheetPicture>,
+}
+
+/// A proof sheet.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Sheet {
+    /// The file before.
+    pub before: FileFacts,
+    /// The file after, as it lies on the disk.
+    pub after: FileFacts,
+    /// One for each clip compared.
+    pub clips: Vec<ClipProof>,
+    /// What the readers of both files told.
+    pub notes: Vec<String>,
+}
+
+impl FoundSnag {
+    /// From a snag of a clip whose joints have these labels. `left` are the snags of the clip after.
+    pub fn new(snag: &Snag, label: &str, gone: bool) -> Self {
+        Self {
+            kind: snag.kind,
+            joint: label.to_owned(),
+            frames: [snag.first_frame, snag.last_frame],
+            secs: [snag.first_secs, snag.last_secs],
+            size_rad: snag.size_rad,
+            text: snag.text.clone(),
+            gone,
+        }
+    }
+
+    /// Whether another is of the same kind and joint and shares a frame with this one.
+    pub fn meets(&self, other: &Self) -> bool {
+        self.kind == other.kind
+            && self.joint == other.joint
+            && self.frames[0] <= other.frames[1]
+            && other.frames[0] <= self.frames[1]
+    }
+}
+
+impl ClipProof {
+    /// Puts measurement and snags together. A snag before is gone when none after meets it.
+    pub fn new(
+        label: String,
+        index: usize,
+        measurement: Measurement,
+        mut before: Vec<FoundSnag>,
+        after: Vec<FoundSnag>,
+    ) -> Self {
+        for snag in &mut before {
+            snag.gone = !after.iter().any(|other| other.meets(snag));
+        }
+        let new = after.into_iter().filter(|snag| !before.iter().any(|other| other.meets(snag))).collect();
+        Self { label, index, measurement, found: before, new, curves: Vec::new(), pictures: Vec::new() }
+    }
+
+    /// How many snags are gone.
+    pub fn gone(&self) -> usize {
+        self.found.iter().filter(|snag| snag.gone).count()
+    }
+}
+
+impl Sheet {
+    /// The largest change of any joint in any clip, radians.
+    pub fn max_change_rad(&self) -> f64 {
+        self.clips.iter().map(|clip| clip.measurement.max_change_rad()).fold(0.0, f64::max)
+    }
+}

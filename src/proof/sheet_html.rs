@@ -1,0 +1,393 @@
+//! The proof sheet for people: one HTML page that needs nothing beside it.
+
+use std::fmt::Write as _;
+
+use base64::Engine as _;
+
+use super::curve_svg::curve_svg;
+use super::measure::{JointMeasure, Measurement};
+use super::rates::Peak;
+use super::sheet::{CAUTION, ClipProof, FoundSnag, Sheet, SheetPicture};
+
+/// Light and dark, screen and paper. The planes' colours are Okabe and Ito's (2008).
+const STYLE: &str = include_str!("sheet.css");
+
+/// Changes below this many degrees are what file formats round away.
+const ROUNDING_DEG: f64 = 1e-3;
+
+/// The sheet as an HTML page.
+pub fn sheet_html(sheet: &Sheet) -> String {
+    let mut page = String::with_capacity(64 << 10);
+    let title = format!("Proof sheet: {}", file_name(&sheet.after.file));
+    let _ = write!(
+        page,
+        "<!doctype html>\n<html lang=\"en\">\n<head>\n<meta charset=\"utf-8\">\n\
+         <meta name=\"viewport\" content=\"width=device-width, initial-scale=1\">\n\
+         <meta name=\"color-scheme\" content=\"light dark\">\n<title>{}</title>\n<style>\n{STYLE}</style>\n</head>\n<body>\n<main>\n",
+        escape(&title)
+    );
+    head(&mut page, sheet);
+    for clip in &sheet.clips {
+        clip_section(&mut page, clip, sheet.clips.len() > 1);
+    }
+    foot(&mut page, sheet);
+    page.push_str("</main>\n</body>\n</html>\n");
+    page
+}
+
+fn head(page: &mut String, sheet: &Sheet) {
+    let _ = write!(
+        page,
+        "<header>\n<h1>Proof sheet</h1>\n<table class=\"files\">\n<tr><th scope=\"row\">Before</th><td>{}</td><td class=\"hash\" title=\"SHA-256 {}\">{}</td></tr>\n\
+         <tr><th scope=\"row\">After</th><td>{}</td><td class=\"hash\" title=\"SHA-256 {}\">{}</td></tr>\n</table>\n",
+        escape(&sheet.before.file),
+        sheet.before.sha256,
+        short_hash(&sheet.before.sha256),
+        escape(&sheet.after.file),
+        sheet.after.sha256,
+        short_hash(&sheet.after.sha256),
+    );
+    for note in &sheet.notes {
+        let _ = writeln!(page, "<p class=\"note\">{}</p>", escape(note));
+    }
+    page.push_str("</header>\n");
+}
+
+fn clip_section(page: &mut String, clip: &ClipProof, is_one_of_several: bool) {
+    let measurement = &clip.measurement;
+    page.push_str("<section>\n");
+    if is_one_of_several {
+        let _ = writeln!(page, "<h2>Clip {}</h2>", escape(&clip.label));
+    }
+    let _ = writeln!(
+        page,
+        "<p class=\"facts\">{} · {} joints · {} frames at {} a second · {} s</p>",
+        escape(&clip.label),
+        measurement.joints.len(),
+        measurement.frames,
+        plain(measurement.rate, 3),
+        plain(measurement.durations_secs[0], 3),
+    );
+    if let Some(warning) = unlike(measurement) {
+        let _ = writeln!(page, "<p class=\"note\">{}</p>", escape(&warning));
+    }
+    tiles(page, clip);
+    snags(page, clip);
+    pictures(page, &clip.pictures);
+    if !clip.curves.is_empty() {
+        page.push_str(
+            "<h3>Joints that changed most</h3>\n<p class=\"legend\"><span class=\"swatch before\"></span>before \
+             <span class=\"swatch yz\"></span>yz <span class=\"swatch zx\"></span>zx <span class=\"swatch xy\"></span>xy \
+             after. Plane angles in degrees, away from one orientation of the joint.</p>\n<div class=\"curves\">\n",
+        );
+        for curves in &clip.curves {
+            page.push_str(&curve_svg(curves));
+        }
+        page.push_str("</div>\n");
+    }
+    joints(page, measurement);
+    tips(page, measurement);
+    page.push_str("</section>\n");
+}
+
+/// What the two clips do not share, in words.
+fn unlike(measurement: &Measurement) -> Option<String> {
+    let mut parts = Vec::new();
+    let [before, after] = measurement.durations_secs;
+    if (before - after).abs() > 0.5 / measurement.rate.max(1e-9) {
+        let (before, after) = (plain(before, 3), plain(after, 3));
+        parts.push(format!("The clips last {before} s and {after} s; compared is what both have."));
+    }
+    for (names, which) in [(&measurement.only_before, "before"), (&measurement.only_after, "after")] {
+        if !names.is_empty() {
+            parts.push(format!("Only {which}: {}.", names.join(", ")));
+        }
+    }
+    (!parts.is_empty()).then(|| parts.join(" "))
+}
+
+fn tiles(page: &mut String, clip: &ClipProof) {
+    let measurement = &clip.measurement;
+    page.push_str("<dl class=\"tiles\">\n");
+    let mut tile = |label: &str, value: &str, more: &str| {
+        let _ = writeln!(
+            page,
+            "<div><dt>{label}</dt><dd>{value}</dd><dd class=\"more\">{more}</dd></div>",
+            value = escape(value),
+            more = escape(more)
+        );
+    };
+    let left = clip.found.len() - clip.gone();
+    let more = match (left, clip.new.len()) {
+        (0, 0) => "none left".to_owned(),
+        (left, 0) => format!("{left} left"),
+        (left, new) => format!("{left} left, {new} new"),
+    };
+    tile("Snags gone", &format!("{} of {}", clip.gone(), clip.found.len()), &more);
+    let where_most = measurement.most_changed().filter(|joint| joint.change.value > 0.0);
+    let change =
+        where_most.map_or_else(String::new, |joint| format!("{} at {}", joint.label, at(joint.change)));
+    tile("Largest change", &degrees(measurement.max_change_rad()), &change);
+    let farthest = measurement.farthest_tip().filter(|tip| tip.moved.value > 0.0);
+    tile(
+        "Farthest limb end",
+        &farthest.map_or_else(|| "0".to_owned(), |tip| significant(tip.moved.value)),
+        &farthest
+            .map_or_else(String::new, |tip| format!("{} at {}, file's lengths", tip.label, at(tip.moved))),
+    );
+    let untouched = measurement.joints_untouched();
+    let bits = if measurement.joints.iter().any(|joint| joint.keys_changed.is_none()) {
+        "the two files hold turns in different forms".to_owned()
+    } else {
+        "the same in every bit".to_owned()
+    };
+    tile("Joints untouched", &format!("{untouched} of {}", measurement.joints.len()), &bits);
+    if let Some(frames) = measurement.frames_untouched {
+        tile(
+            "Frames untouched",
+            &format!("{frames} of {}", measurement.frames),
+            "in all joints, in every bit",
+        );
+    }
+    let [before, after] = measurement.fastest_rad().map(|rate| whole(rate.to_degrees()));
+    tile("Fastest turn", &format!("{before} → {after}"), "degrees per second, frame to frame");
+    let [before, after] = measurement.jerk_rad().map(|jerk| significant(jerk.to_degrees()));
+    tile("Largest jerk", &format!("{before} → {after}"), "degrees per second cubed");
+    let off = measurement.off_unit.map(significant);
+    let [lost_before, lost_after] = measurement.not_finite;
+    tile(
+        "Off unit length",
+        &format!("{} → {}", off[0], off[1]),
+        &format!("largest of any stored rotor; no numbers: {lost_before} → {lost_after}"),
+    );
+    page.push_str("</dl>\n");
+}
+
+fn snags(page: &mut String, clip: &ClipProof) {
+    if clip.found.is_empty() && clip.new.is_empty() {
+        page.push_str("<p>No snag was found in the clip before, and none after.</p>\n");
+        return;
+    }
+    page.push_str(
+        "<h3>What was found</h3>\n<div class=\"wide\"><table>\n<thead><tr><th>State</th><th>Kind</th><th>Joint</th><th class=\"n\">Frames</th>\
+         <th class=\"n\">Seconds</th><th class=\"n\">Size</th><th>What it is</th></tr></thead>\n<tbody>\n",
+    );
+    let mut row = |snag: &FoundSnag, state: &str| {
+        let range = |a: String, b: String| if a == b { a } else { format!("{a}–{b}") };
+        let _ = writeln!(
+            page,
+            "<tr><td class=\"{state}\">{state}</td><td><b class=\"letter\">{}</b> {}</td><td>{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td>{}</td></tr>",
+            snag.kind.letter(),
+            snag.kind,
+            escape(&snag.joint),
+            range(snag.frames[0].to_string(), snag.frames[1].to_string()),
+            range(plain(snag.secs[0], 2), plain(snag.secs[1], 2)),
+            degrees(snag.size_rad),
+            escape(&snag.text),
+        );
+    };
+    for snag in &clip.found {
+        row(snag, if snag.gone { "gone" } else { "left" });
+    }
+    for snag in &clip.new {
+        row(snag, "new");
+    }
+    page.push_str("</tbody>\n</table></div>\n");
+}
+
+fn pictures(page: &mut String, pictures: &[SheetPicture]) {
+    let encode = |png: &[u8]| base64::engine::general_purpose::STANDARD.encode(png);
+    for picture in pictures {
+        let (title, caption) = (escape(&picture.title), escape(&picture.caption));
+        let _ = writeln!(
+            page,
+            "<h3>{title}</h3>\n<figure><picture><source media=\"screen and (prefers-color-scheme: dark)\" srcset=\"data:image/png;base64,{}\">\
+             <img alt=\"{title}: {caption}\" src=\"data:image/png;base64,{}\"></picture><figcaption>{caption}</figcaption></figure>",
+            encode(&picture.dark_png),
+            encode(&picture.light_png),
+        );
+    }
+}
+
+fn joints(page: &mut String, measurement: &Measurement) {
+    let is_same = |joint: &&JointMeasure| joint.untouched || joint.change.value.to_degrees() < ROUNDING_DEG;
+    let mut rows: Vec<&JointMeasure> = measurement.joints.iter().collect();
+    rows.sort_by(|a, b| b.change.value.total_cmp(&a.change.value));
+    let changed = rows.iter().position(is_same).unwrap_or(rows.len());
+    page.push_str("<h3>Joints</h3>\n");
+    if changed == 0 {
+        page.push_str("<p>No joint turns otherwise than before by a thousandth of a degree.</p>\n");
+    } else {
+        joint_table(page, &rows[..changed]);
+    }
+    if changed < rows.len() {
+        let count = rows.len() - changed;
+        let _ = writeln!(
+            page,
+            "<details><summary>{count} {} whose motion is the same to a thousandth of a degree</summary>",
+            if count == 1 { "joint" } else { "joints" }
+        );
+        joint_table(page, &rows[changed..]);
+        page.push_str("</details>\n");
+    }
+}
+
+fn joint_table(page: &mut String, rows: &[&JointMeasure]) {
+    page.push_str(
+        "<div class=\"wide\"><table>\n<thead><tr><th rowspan=\"2\">Joint</th><th colspan=\"4\">Change, degrees</th><th rowspan=\"2\" class=\"n\">Keys<br>changed</th>\
+         <th colspan=\"2\">Fastest turn, °/s</th><th colspan=\"2\">RMS jerk, °/s³</th></tr>\n<tr><th class=\"n\">largest</th><th class=\"n\">at</th>\
+         <th class=\"n\">mean</th><th class=\"n\">95 %</th><th class=\"n\">before</th><th class=\"n\">after</th><th class=\"n\">before</th><th class=\"n\">after</th></tr></thead>\n<tbody>\n",
+    );
+    for joint in rows {
+        let keys = match &joint.keys_changed {
+            None => "–".to_owned(),
+            Some(_) if joint.untouched => "none".to_owned(),
+            Some(keys) => keys.len().to_string(),
+        };
+        let when = if joint.change.value > 0.0 { at(joint.change) } else { String::new() };
+        let (before, after) = (&joint.rates_before, &joint.rates_after);
+        let number = |radians: f64| significant(radians.to_degrees());
+        let _ = writeln!(
+            page,
+            "<tr><td>{}</td><td class=\"n\">{}</td><td class=\"n\">{when}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{keys}</td>\
+             <td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td></tr>",
+            escape(&joint.label),
+            small(joint.change.value.to_degrees()),
+            small(joint.mean_rad.to_degrees()),
+            small(joint.p95_rad.to_degrees()),
+            whole(before.fastest.value.to_degrees()),
+            whole(after.fastest.value.to_degrees()),
+            number(before.rms_jerk),
+            number(after.rms_jerk),
+        );
+    }
+    page.push_str("</tbody>\n</table></div>\n");
+}
+
+fn tips(page: &mut String, measurement: &Measurement) {
+    let moved: Vec<_> = measurement.tips.iter().filter(|tip| tip.moved.value > 1e-9).collect();
+    if moved.is_empty() {
+        return;
+    }
+    page.push_str(
+        "<h3>Ends of limbs</h3>\n<div class=\"wide\"><table>\n<thead><tr><th>Joint</th><th class=\"n\">Farthest</th><th class=\"n\">at</th><th class=\"n\">Mean</th></tr></thead>\n<tbody>\n",
+    );
+    for tip in moved {
+        let _ = writeln!(
+            page,
+            "<tr><td>{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td></tr>",
+            escape(&tip.label),
+            significant(tip.moved.value),
+            at(tip.moved),
+            significant(tip.mean)
+        );
+    }
+    page.push_str("</tbody>\n</table></div>\n");
+}
+
+fn foot(page: &mut String, sheet: &Sheet) {
+    let times: usize = sheet.clips.iter().map(|clip| clip.measurement.times_compared).sum();
+    let _ = write!(
+        page,
+        "<footer>\n<p>Measured on the written file as read back, played as its format says, at {times} times: every frame and key of both files and the middles \
+         between. Change: the turn from a joint's orientation before to that after, relative to its parent. Ends of limbs: distance in the scene, in the file's lengths. \
+         Fastest turn and jerk: differences from frame to frame.</p>\n<p class=\"caution\">{CAUTION}</p>\n<p>Turnwright {}</p>\n</footer>\n",
+        env!("CARGO_PKG_VERSION")
+    );
+}
+
+fn at(peak: Peak) -> String {
+    format!("{} s", plain(peak.at_secs, 3))
+}
+
+fn degrees(radians: f64) -> String {
+    format!("{}°", small(radians.to_degrees()))
+}
+
+/// A change in degrees: fine when small, and 0 only when nothing at all changed.
+fn small(degrees: f64) -> String {
+    match degrees {
+        0.0 => "0".to_owned(),
+        tiny if tiny < 0.0005 => "< 0.001".to_owned(),
+        large if large >= 100.0 => format!("{large:.1}"),
+        usual => format!("{usual:.3}"),
+    }
+}
+
+/// With at most so many decimals, and none that are zeros at the end.
+fn plain(value: f64, decimals: usize) -> String {
+    let text = format!("{value:.decimals$}");
+    if text.contains('.') { text.trim_end_matches('0').trim_end_matches('.').to_owned() } else { text }
+}
+
+/// A whole number with thin gaps between thousands.
+fn whole(value: f64) -> String {
+    let digits = format!("{:.0}", value.abs());
+    let mut text = String::new();
+    for (place, digit) in digits.chars().enumerate() {
+        if place > 0 && (digits.len() - place).is_multiple_of(3) {
+            text.push('\u{202f}');
+        }
+        text.push(digit);
+    }
+    text
+}
+
+/// Three significant digits.
+fn significant(value: f64) -> String {
+    if value == 0.0 {
+        return "0".to_owned();
+    }
+    if !(1e-3..1e7).contains(&value) {
+        return format!("{value:.2e}");
+    }
+    if value >= 100.0 {
+        return whole(value);
+    }
+    let decimals = (2 - value.log10().floor() as i32).max(0) as usize;
+    plain(value, decimals)
+}
+
+fn short_hash(hash: &str) -> &str {
+    hash.get(..12).unwrap_or(hash)
+}
+
+fn file_name(path: &str) -> &str {
+    path.rsplit(['/', '\\']).next().unwrap_or(path)
+}
+
+/// Text that a browser shows as it is.
+pub(super) fn escape(text: &str) -> String {
+    let mut safe = String::with_capacity(text.len());
+    for letter in text.chars() {
+        match letter {
+            '&' => safe.push_str("&amp;"),
+            '<' => safe.push_str("&lt;"),
+            '>' => safe.push_str("&gt;"),
+            '"' => safe.push_str("&quot;"),
+            '\'' => safe.push_str("&#39;"),
+            _ => safe.push(letter),
+        }
+    }
+    safe
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn numbers_are_short_and_never_hide_a_change() {
+        assert_eq!([0.0, 0.0001, 0.25, 179.96].map(small), ["0", "< 0.001", "0.250", "180.0"]);
+        assert_eq!(
+            [0.0, 0.01234, 7.5, 48.06, 12_345.0].map(significant),
+            ["0", "0.0123", "7.5", "48.1", "12\u{202f}345"]
+        );
+        assert_eq!(plain(60.0, 3), "60");
+    }
+
+    #[test]
+    fn names_from_files_cannot_become_markup() {
+        assert_eq!(escape("<b>\"A&B\"</b>"), "&lt;b&gt;&quot;A&amp;B&quot;&lt;/b&gt;");
+    }
+}
