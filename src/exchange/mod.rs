@@ -6,5 +6,6 @@ pub mod bvh;
 pub mod disk;
 pub mod gltf;
 mod note;
+pub mod ron;
 
 pub use note::Note;

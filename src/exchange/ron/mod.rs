@@ -1,0 +1,8 @@
+//! Our own scenes: versioned RON text that refers to its sources by relative path and content hash.
+
+mod error;
+mod mirror;
+mod scene_file;
+
+pub use error::SceneError;
+pub use scene_file::{SceneFile, read, write};

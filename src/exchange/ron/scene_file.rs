@@ -1,0 +1,381 @@
+//! Reading and writing scene files, and fitting a scene to the skeletons its sources have now.
+
+use std::collections::BTreeMap;
+use std::path::{Component, Path, PathBuf};
+
+use crate::rotor::Rotor;
+use crate::scene::{ClipWork, Document, MendPass, Pass, PassId, PassStep, SnagMark, SourceRef};
+use crate::skeleton::Skeleton;
+use crate::snag::{Remedy, Snag, SnagKind};
+
+use super::super::disk;
+use super::error::SceneError;
+use super::mirror;
+
+/// A scene as read: the document, and by what names it knew the joints.
+#[derive(Clone, Debug, PartialEq)]
+pub struct SceneFile {
+    /// The document. Source paths are joined to the scene's folder. Joint numbers are those of the day it was saved.
+    pub document: Document,
+    /// For each clip's work, the label of each joint number that it uses.
+    pub labels: Vec<BTreeMap<usize, String>>,
+}
+
+impl SceneFile {
+    /// Renumbers the joints of a clip's work to those that bear their labels in `skeleton` now.
+    /// What names a joint that is no longer there is taken out; gives the labels that were lost.
+    pub fn fit(&mut self, work: usize, skeleton: &Skeleton) -> Vec<String> {
+        let (Some(labels), Some(clip)) = (self.labels.get(work), self.document.works.get_mut(work)) else {
+            return Vec::new();
+        };
+        let now: BTreeMap<usize, Option<usize>> =
+            labels.iter().map(|(&number, label)| (number, skeleton.find(label))).collect();
+        let fitted = |number: usize| now.get(&number).copied().flatten();
+        for pass in &mut clip.passes {
+            match &mut pass.step {
+                PassStep::Mend(mend) => {
+                    mend.snags
+                        .retain_mut(|snag| fitted(snag.joint).map(|joint| snag.joint = joint).is_some());
+                }
+            }
+        }
+        clip.left.retain_mut(|mark| fitted(mark.joint).map(|joint| mark.joint = joint).is_some());
+        let lost = labels.iter().filter(|&(&number, _)| fitted(number).is_none());
+        lost.map(|(_, label)| label.clone()).collect()
+    }
+}
+
+/// Reads a scene file. Its sources are not opened.
+///
+/// # Errors
+/// When the file can't be read, is no scene, is from a newer version, or its parts do not fit each other.
+pub fn read(path: &Path) -> Result<SceneFile, SceneError> {
+    let bytes = disk::read(path)?;
+    let text = std::str::from_utf8(&bytes)
+        .map_err(|error| SceneError::NoText { path: path.to_owned(), at: error.valid_up_to() })?;
+    from_text(path, text)
+}
+
+/// Writes a scene file at one stroke. `label` names joint `.1` of clip work `.0`.
+///
+/// # Errors
+/// When the system refuses; the old file then stays.
+pub fn write(
+    path: &Path,
+    document: &Document,
+    label: &dyn Fn(usize, usize) -> String,
+) -> Result<(), SceneError> {
+    let text = to_text(path, document, label)?;
+    Ok(disk::write(path, text.as_bytes())?)
+}
+
+fn from_text(path: &Path, text: &str) -> Result<SceneFile, SceneError> {
+    let syntax = |error: ron::error::SpannedError| SceneError::Syntax {
+        path: path.to_owned(),
+        line: error.span.start.line,
+        column: error.span.start.col,
+        what: error.code.to_string(),
+    };
+    let head: mirror::Head = ron::from_str(text).map_err(syntax)?;
+    if head.turnwright_scene > mirror::VERSION {
+        return Err(SceneError::TooNew {
+            path: path.to_owned(),
+            known: mirror::VERSION,
+            found: head.turnwright_scene,
+        });
+    }
+    let scene: mirror::Saved = ron::from_str(text).map_err(syntax)?;
+    let folder = path.parent().unwrap_or(Path::new(""));
+    let mut file = SceneFile { document: Document::default(), labels: Vec::new() };
+    for source in scene.sources {
+        file.document.sources.push(SourceRef { path: folder.join(source.path), sha256: source.sha256 });
+    }
+    for (index, clip) in scene.clips.into_iter().enumerate() {
+        let meaning = |what: String| SceneError::Meaning {
+            path: path.to_owned(),
+            place: format!("clips[{index}]"),
+            what,
+        };
+        let sources = file.document.sources.len();
+        if clip.source >= sources {
+            return Err(meaning(format!("expected a source below {sources}, found {}", clip.source)));
+        }
+        let (work, labels) = work_from(clip).map_err(meaning)?;
+        file.document.works.push(work);
+        file.labels.push(labels);
+    }
+    Ok(file)
+}
+
+fn work_from(clip: mirror::ClipWork) -> Result<(ClipWork, BTreeMap<usize, String>), String> {
+    let mut labels = BTreeMap::new();
+    let mut work = ClipWork::new(clip.source, clip.clip, clip.name);
+    for pass in clip.passes {
+        let mirror::Step::Mend { kind, amount, snags } = pass.step;
+        let kind = kind_from(&kind)?;
+        if !(0.0..=1.0).contains(&amount) {
+            return Err(format!("expected an amount from 0 to 1, found {amount}"));
+        }
+        for snag in &snags {
+            labels.insert(snag.joint_index, snag.joint.clone());
+        }
+        let snags = snags.into_iter().map(|snag| snag_from(kind, snag)).collect();
+        let id = PassId(pass.id);
+        if work.passes.iter().any(|own| own.id == id) {
+            return Err(format!("expected every pass to have its own id, found {} twice", pass.id));
+        }
+        work.passes.push(Pass { id, on: pass.on, step: PassStep::Mend(MendPass { kind, snags, amount }) });
+    }
+    for left in clip.left {
+        let (first_key, last_key) = left.keys;
+        work.left.push(SnagMark {
+            kind: kind_from(&left.kind)?,
+            joint: left.joint_index,
+            first_key,
+            last_key,
+        });
+        labels.insert(left.joint_index, left.joint);
+    }
+    Ok((work, labels))
+}
+
+fn kind_from(text: &str) -> Result<SnagKind, String> {
+    text.parse().map_err(|error: crate::snag::NoSuchKind| error.to_string())
+}
+
+fn snag_from(kind: SnagKind, snag: mirror::Snag) -> Snag {
+    Snag {
+        kind,
+        joint: snag.joint_index,
+        first_key: snag.keys.0,
+        last_key: snag.keys.1,
+        first_frame: snag.frames.0,
+        last_frame: snag.frames.1,
+        first_secs: snag.seconds.0,
+        last_secs: snag.seconds.1,
+        size_rad: snag.size_deg.to_radians(),
+        confidence: snag.confidence,
+        remedy: match snag.remedy {
+            mirror::Remedy::Normalise => Remedy::Normalise,
+            mirror::Remedy::Negate => Remedy::Negate,
+            mirror::Remedy::Unwrap(a, b, c) => Remedy::Unwrap([a, b, c]),
+            mirror::Remedy::NearestAngles => Remedy::NearestAngles,
+            mirror::Remedy::Redraw => Remedy::Redraw,
+            mirror::Remedy::ShortWay => Remedy::ShortWay,
+            mirror::Remedy::TakeOut(s, yz, zx, xy) => Remedy::TakeOut(Rotor::new(s, yz, zx, xy)),
+            mirror::Remedy::TakeOutAbove(s, yz, zx, xy) => Remedy::TakeOutAbove(Rotor::new(s, yz, zx, xy)),
+            mirror::Remedy::Ask => Remedy::Ask,
+        },
+        safe: snag.safe,
+        text: snag.text,
+    }
+}
+
+fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
+    mirror::Snag {
+        joint,
+        joint_index: snag.joint,
+        keys: (snag.first_key, snag.last_key),
+        frames: (snag.first_frame, snag.last_frame),
+        seconds: (snag.first_secs, snag.last_secs),
+        size_deg: snag.size_rad.to_degrees(),
+        confidence: snag.confidence,
+        remedy: match snag.remedy {
+            Remedy::Normalise => mirror::Remedy::Normalise,
+            Remedy::Negate => mirror::Remedy::Negate,
+            Remedy::Unwrap([a, b, c]) => mirror::Remedy::Unwrap(a, b, c),
+            Remedy::NearestAngles => mirror::Remedy::NearestAngles,
+            Remedy::Redraw => mirror::Remedy::Redraw,
+            Remedy::ShortWay => mirror::Remedy::ShortWay,
+            Remedy::TakeOut(r) => mirror::Remedy::TakeOut(r.s, r.yz, r.zx, r.xy),
+            Remedy::TakeOutAbove(r) => mirror::Remedy::TakeOutAbove(r.s, r.yz, r.zx, r.xy),
+            Remedy::Ask => mirror::Remedy::Ask,
+        },
+        safe: snag.safe,
+        text: snag.text.clone(),
+    }
+}
+
+fn to_text(
+    path: &Path,
+    document: &Document,
+    label: &dyn Fn(usize, usize) -> String,
+) -> Result<String, SceneError> {
+    let folder = path.parent().unwrap_or(Path::new(""));
+    let sources = document
+        .sources
+        .iter()
+        .map(|source| mirror::Source { path: relative(folder, &source.path), sha256: source.sha256.clone() });
+    let clips = document.works.iter().enumerate().map(|(index, work)| mirror::ClipWork {
+        source: work.source,
+        clip: work.clip,
+        name: work.name.clone(),
+        passes: work
+            .passes
+            .iter()
+            .map(|pass| {
+                let PassStep::Mend(mend) = &pass.step;
+                mirror::Pass {
+                    id: pass.id.0,
+                    on: pass.on,
+                    step: mirror::Step::Mend {
+                        kind: mend.kind.to_string(),
+                        amount: mend.amount,
+                        snags: mend
+                            .snags
+                            .iter()
+                            .map(|snag| snag_to(snag, label(index, snag.joint)))
+                            .collect(),
+                    },
+                }
+            })
+            .collect(),
+        left: work
+            .left
+            .iter()
+            .map(|mark| mirror::Left {
+                kind: mark.kind.to_string(),
+                joint: label(index, mark.joint),
+                joint_index: mark.joint,
+                keys: (mark.first_key, mark.last_key),
+            })
+            .collect(),
+    });
+    let scene = mirror::Saved {
+        turnwright_scene: mirror::VERSION,
+        sources: sources.collect(),
+        clips: clips.collect(),
+    };
+    let pretty = ron::ser::PrettyConfig::new().depth_limit(6).struct_names(false).new_line("\n");
+    let text = ron::ser::to_string_pretty(&scene, pretty)
+        .map_err(|error| SceneError::Encode { path: path.to_owned(), what: error.to_string() })?;
+    Ok(text + "\n")
+}
+
+/// `path` as seen from `folder`, with `/` between, so that a scene can move with its sources.
+/// What can't be told apart from `folder` (another drive) stays absolute.
+fn relative(folder: &Path, path: &Path) -> String {
+    let absolute = |path: &Path| std::path::absolute(path).unwrap_or_else(|_| path.to_owned());
+    let (folder, path) = (tidy(&absolute(folder)), tidy(&absolute(path)));
+    let own: Vec<Component<'_>> = folder.components().collect();
+    let others: Vec<Component<'_>> = path.components().collect();
+    let shared = own.iter().zip(&others).take_while(|(a, b)| a == b).count();
+    if shared == 0 {
+        return path.to_string_lossy().into_owned();
+    }
+    let up = std::iter::repeat_n("..".to_owned(), own.len() - shared);
+    let down = others[shared..].iter().map(|part| part.as_os_str().to_string_lossy().into_owned());
+    up.chain(down).collect::<Vec<_>>().join("/")
+}
+
+/// The path with `.` and `x/..` taken out, by its text alone.
+fn tidy(path: &Path) -> PathBuf {
+    path.components().fold(PathBuf::new(), |mut tidied, part| {
+        match part {
+            Component::CurDir => {}
+            Component::ParentDir => {
+                tidied.pop();
+            }
+            other => tidied.push(other),
+        }
+        tidied
+    })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn snag(kind: SnagKind, joint: usize, remedy: Remedy) -> Snag {
+        Snag {
+            kind,
+            joint,
+            first_key: 3,
+            last_key: 5,
+            first_frame: 3,
+            last_frame: 5,
+            first_secs: 0.1,
+            last_secs: 1.0 / 6.0,
+            size_rad: 3.0,
+            confidence: 0.75,
+            remedy,
+            safe: true,
+            text: "Hip flips 172° at frame 3 and back at 6".to_owned(),
+        }
+    }
+
+    fn document(folder: &Path) -> Document {
+        let offset = Rotor::from_xyzw([0.6, 0.0, 0.8, 0.0]);
+        let mut work = ClipWork::new(0, 0, "walk");
+        work.passes.push(Pass {
+            id: PassId(4),
+            on: false,
+            step: PassStep::Mend(MendPass {
+                kind: SnagKind::HalfTurn,
+                snags: vec![snag(SnagKind::HalfTurn, 2, Remedy::TakeOut(offset))],
+                amount: 0.5,
+            }),
+        });
+        work.left.push(SnagMark::of(&snag(SnagKind::Spike, 1, Remedy::Redraw)));
+        let source = SourceRef { path: folder.join("takes/walk.bvh"), sha256: "00".repeat(32) };
+        Document { sources: vec![source], works: vec![work] }
+    }
+
+    fn label(_work: usize, joint: usize) -> String {
+        ["Root", "Spine", "Hip"][joint].to_owned()
+    }
+
+    #[test]
+    fn a_scene_comes_back_as_it_was_saved() {
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("scenes/night.ron");
+        let document = document(folder.path());
+        write(&path, &document, &label).unwrap();
+        let mut back = read(&path).unwrap();
+        assert_eq!(tidy(&back.document.sources[0].path), document.sources[0].path);
+        back.document.sources[0].path.clone_from(&document.sources[0].path);
+        // An angle in degrees and back may move by its last bit.
+        let PassStep::Mend(mend) = &mut back.document.works[0].passes[0].step;
+        assert!((mend.snags[0].size_rad - 3.0).abs() < 1e-15);
+        mend.snags[0].size_rad = 3.0;
+        assert_eq!(back.document, document);
+        let text = std::str::from_utf8(&disk::read(&path).unwrap()).unwrap().to_owned();
+        assert!(text.contains("path: \"../takes/walk.bvh\""), "{text}");
+    }
+
+    #[test]
+    fn joints_are_found_again_by_name() {
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("night.ron");
+        write(&path, &document(folder.path()), &label).unwrap();
+        let mut back = read(&path).unwrap();
+        let joint = |name: &str, number| crate::skeleton::Joint {
+            name: name.to_owned(),
+            number,
+            parent: None,
+            rest: crate::skeleton::Transform::IDENTITY,
+            kind: crate::skeleton::JointKind::Joint,
+            tips: vec![],
+        };
+        let skeleton = Skeleton::new(vec![joint("Hip", 0), joint("Root", 1)]).unwrap();
+        assert_eq!(back.fit(0, &skeleton), ["Spine"]);
+        let PassStep::Mend(mend) = &back.document.works[0].passes[0].step;
+        assert_eq!(mend.snags[0].joint, 0);
+        assert!(back.document.works[0].left.is_empty());
+    }
+
+    #[test]
+    fn what_is_no_scene_is_told_with_its_place() {
+        let check = |text: &str, expected: &str| {
+            let error = from_text(Path::new("x.ron"), text).unwrap_err().to_string();
+            assert!(error.contains(expected), "{text}: {error}");
+        };
+        check("", "x.ron: line 1, column 1: expected a Turnwright scene");
+        check("(turnwright_scene: 99)", "expected scene version 1 or older, found 99");
+        check(
+            "(turnwright_scene: 1, sources: [], clips: [(source: 0, clip: 0, name: \"a\")])",
+            "expected a source below 0, found 0",
+        );
+        check("(turnwright_scene: 1, sources: 7, clips: [])", "line 1, column 31");
+    }
+}

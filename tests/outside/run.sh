@@ -1,0 +1,42 @@
+#!/usr/bin/env bash
+# Holds the built program against readers that others wrote: scipy for BVH, the three loader for glTF, and the
+# Khronos validator for every .glb written. usage: tests/outside/run.sh PROGRAM   (from the crate's root)
+set -euo pipefail
+program=$(realpath "$1")
+data=../shared/data
+if [ ! -d "$data" ]; then
+    echo "skipped: no real clips at $data"
+    [ -z "${CI:-}" ]
+    exit
+fi
+python=target/outside/venv/bin/python
+out=target/outside/written
+rm -rf "$out" && mkdir -p "$out"
+
+echo "-- BVH as scipy plays it"
+"$python" tests/outside/bvh_check.py "$program" "$data"/bvh/*.bvh
+
+echo "-- glTF as the three loader plays it"
+node tests/outside/gltf_check.mjs "$program" "$data"/gltf/*.gl* "$data"/gltf/assetgen/*.gltf
+
+echo "-- every file mended and written; what is written reads back and is valid"
+for file in "$data"/gltf/*.gl* "$data"/gltf/assetgen/*.gltf; do
+    name=$(basename "$file")
+    "$program" mend "$file" -o "$out/${name%.*}.glb" 2>"$out/$name.log" || { cat "$out/$name.log"; exit 1; }
+    node tests/outside/validate.mjs "$file" "$out/${name%.*}.glb"
+done
+for file in "$data"/bvh/*.bvh; do
+    name=$(basename "$file" .bvh)
+    "$program" mend "$file" -o "$out/$name.bvh" 2>"$out/$name.log" || { cat "$out/$name.log"; exit 1; }
+    "$program" convert "$out/$name.bvh" -o "$out/$name.from_bvh.glb" 2>>"$out/$name.log" || { cat "$out/$name.log"; exit 1; }
+    node tests/outside/validate.mjs "$out/$name.from_bvh.glb"
+done
+for file in "$data"/csv/humanoid3d_*.csv "$data"/csv/imu_a_quaternion_wxyz.csv "$data"/csv/walk01_rot.csv; do
+    name=$(basename "$file" .csv)
+    "$program" mend "$file" -o "$out/$name.csv" 2>"$out/$name.log" || { cat "$out/$name.log"; exit 1; }
+    "$program" convert "$out/$name.csv" -o "$out/$name.from_csv.glb" 2>>"$out/$name.log" || { cat "$out/$name.log"; exit 1; }
+    node tests/outside/validate.mjs "$out/$name.from_csv.glb"
+done
+echo "-- what was written plays for outsiders as it does for us"
+"$python" tests/outside/bvh_check.py "$program" "$out"/*.bvh
+node tests/outside/gltf_check.mjs "$program" "$out"/*.glb
