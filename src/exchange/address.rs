@@ -18,7 +18,8 @@ impl ClipAddress {
         match text.rsplit_once('#') {
             Some((path, clip)) if !path.is_empty() && !Path::new(text).exists() => {
                 // Names of clips may hold a `#` as well: the file is the longest beginning that exists.
-                let longest = text.match_indices('#').map(|(at, _)| at).find(|&at| Path::new(&text[..at]).exists());
+                let longest =
+                    text.match_indices('#').map(|(at, _)| at).find(|&at| Path::new(&text[..at]).exists());
                 let (path, clip) = longest.map_or((path, clip), |at| (&text[..at], &text[at + 1..]));
                 Self { path: PathBuf::from(path), clip: (!clip.is_empty()).then(|| clip.to_owned()) }
             }

@@ -2,10 +2,12 @@
 //!
 //! Each format has a folder that turns bytes into clips and clips into bytes; [`disk`] alone touches files.
 
+mod address;
 pub mod bvh;
 pub mod disk;
 pub mod gltf;
 mod note;
 pub mod ron;
 
+pub use address::ClipAddress;
 pub use note::Note;
