@@ -8,6 +8,8 @@ pub mod disk;
 pub mod gltf;
 mod note;
 pub mod ron;
+mod source;
 
 pub use address::ClipAddress;
 pub use note::Note;
+pub use source::{Format, OpenError, OpenOptions, Source, open, open_bytes};

@@ -1,0 +1,178 @@
+//! A file as opened: its clips, and what is needed to give it back with nothing lost.
+
+use std::fmt;
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+use crate::clip::Clip;
+
+use super::{Note, bvh, disk, gltf};
+
+/// A clip format, told by the file's extension.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Format {
+    /// glTF 2.0 as JSON text with its buffers beside it or inside.
+    Gltf,
+    /// glTF 2.0 in one binary file.
+    Glb,
+    /// BVH text.
+    Bvh,
+}
+
+impl Format {
+    /// All formats.
+    pub const ALL: [Self; 3] = [Self::Gltf, Self::Glb, Self::Bvh];
+
+    /// The file extension, lower case, without a dot.
+    pub const fn extension(self) -> &'static str {
+        match self {
+            Self::Gltf => "gltf",
+            Self::Glb => "glb",
+            Self::Bvh => "bvh",
+        }
+    }
+
+    /// By the extension of a file's name, in any case.
+    ///
+    /// # Errors
+    /// When it is none of ours.
+    pub fn of(path: &Path) -> Result<Self, OpenError> {
+        let found = path.extension().map(|extension| extension.to_string_lossy().to_lowercase());
+        let found = found.unwrap_or_default();
+        Self::ALL.into_iter().find(|format| format.extension() == found).ok_or_else(|| OpenError::Extension {
+            path: path.to_owned(),
+            found: if found.is_empty() { "none".to_owned() } else { format!(".{found}") },
+        })
+    }
+
+    /// Whether a file of this format may hold several clips.
+    pub const fn holds_many(self) -> bool {
+        matches!(self, Self::Gltf | Self::Glb)
+    }
+}
+
+impl fmt::Display for Format {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.write_str(match self {
+            Self::Gltf => "glTF",
+            Self::Glb => "GLB",
+            Self::Bvh => "BVH",
+        })
+    }
+}
+
+/// What a person may have to say about a file that does not say it itself.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct OpenOptions {}
+
+/// A clip file that could not be opened.
+#[derive(Debug, thiserror::Error)]
+pub enum OpenError {
+    /// The file itself.
+    #[error(transparent)]
+    Disk(#[from] disk::DiskError),
+    /// No format of ours.
+    #[error("{path}: extension: expected .gltf, .glb, .bvh or .csv, found {found}; rename or convert the file", path = path.display())]
+    Extension {
+        /// The file.
+        path: PathBuf,
+        /// Its extension.
+        found: String,
+    },
+    /// A BVH file that can't be read.
+    #[error("{path}: {source}", path = path.display())]
+    Bvh {
+        /// The file.
+        path: PathBuf,
+        /// What and where.
+        source: bvh::BvhError,
+    },
+    /// A glTF file that can't be read.
+    #[error("{path}: {source}", path = path.display())]
+    Gltf {
+        /// The file.
+        path: PathBuf,
+        /// What and where.
+        source: gltf::GltfError,
+    },
+}
+
+/// A file as opened. Never changed.
+#[derive(Clone, Debug)]
+pub struct Source {
+    /// Where it came from.
+    pub path: PathBuf,
+    /// Its format.
+    pub format: Format,
+    /// SHA-256 of its bytes in hexadecimal.
+    pub sha256: String,
+    /// Its clips, in the file's order; a glTF file may have none.
+    pub clips: Vec<Arc<Clip>>,
+    /// What was odd.
+    pub notes: Vec<Note>,
+    /// What is needed to give it back.
+    pub(super) origin: Origin,
+}
+
+/// The file in its own format.
+#[derive(Clone, Debug)]
+pub(super) enum Origin {
+    Gltf(Arc<gltf::Document>),
+    Bvh(Arc<bvh::Document>),
+}
+
+impl Source {
+    /// What a clip is called in lists: its name, or `#INDEX` where it has none.
+    pub fn clip_label(&self, index: usize) -> String {
+        match self.clips.get(index).map(|clip| clip.name.as_str()) {
+            None | Some("") => format!("#{index}"),
+            Some(name) => name.to_owned(),
+        }
+    }
+
+    /// The clip of that name, else of that index.
+    pub fn find_clip(&self, text: &str) -> Option<usize> {
+        let index =
+            || text.trim_start_matches('#').parse().ok().filter(|&index: &usize| index < self.clips.len());
+        self.clips.iter().position(|clip| clip.name == text).or_else(index)
+    }
+}
+
+/// Opens a clip file.
+///
+/// # Errors
+/// When it can't be read, has none of our extensions, or is not what its extension says.
+pub fn open(path: &Path, options: &OpenOptions) -> Result<Source, OpenError> {
+    // Told first: a wrong name is the likelier slip, and a large wrong file need not be read for it.
+    Format::of(path)?;
+    open_bytes(path, disk::read(path)?, options)
+}
+
+/// Opens a clip from bytes that are already here. `path` gives the format, the clip's name, and the folder in which
+/// companions (glTF buffers, a CSV skeleton) are looked for.
+///
+/// # Errors
+/// As [`open`].
+pub fn open_bytes(path: &Path, bytes: Vec<u8>, _options: &OpenOptions) -> Result<Source, OpenError> {
+    let format = Format::of(path)?;
+    let sha256 = disk::hash(&bytes);
+    let name = path.file_stem().map(|stem| stem.to_string_lossy().into_owned()).unwrap_or_default();
+    let at = || path.to_owned();
+    let (origin, clips, notes) = match format {
+        Format::Gltf | Format::Glb => {
+            let folder = path.parent().unwrap_or(Path::new(""));
+            let fetch =
+                |relative: &str| disk::read(&folder.join(relative)).map_err(|error| error.to_string());
+            let (document, clips, notes) =
+                gltf::read(bytes, &name, &fetch).map_err(|source| OpenError::Gltf { path: at(), source })?;
+            (Origin::Gltf(Arc::new(document)), clips, notes)
+        }
+        Format::Bvh => {
+            let (document, clip, notes) =
+                bvh::read(&bytes, &name).map_err(|source| OpenError::Bvh { path: at(), source })?;
+            (Origin::Bvh(Arc::new(document)), vec![clip], notes)
+        }
+    };
+    let clips = clips.into_iter().map(Arc::new).collect();
+    Ok(Source { path: at(), format, sha256, clips, notes, origin })
+}
