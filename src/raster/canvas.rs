@@ -3,12 +3,12 @@
 use glam::{DVec3, Vec2};
 
 use crate::raster::camera::{Projection, View};
-use crate::raster::image::{Image, blend_pixel, mix_pixel};
+use crate::raster::image::{Image, blend_pixel, to_byte};
 use crate::raster::palette::Color;
-use crate::raster::shape::{ConeFrame, PolygonScan, RoundCone, pixel_span, scan_line};
+use crate::raster::shape::{PolygonScan, RoundCone, pixel_span, scan_line};
 
 /// The depth of a pixel on which nothing stands.
-const FAR: f32 = f32::NEG_INFINITY;
+pub(super) const FAR: f32 = f32::NEG_INFINITY;
 
 /// A picture being drawn. Kept and reused from frame to frame, it allocates nothing.
 #[derive(Debug)]
@@ -16,7 +16,7 @@ pub struct Canvas {
     /// The picture so far.
     pub image: Image,
     /// Depth key of each pixel (see [`View::key`]): larger is nearer.
-    depth: Vec<f32>,
+    pub(super) depth: Vec<f32>,
     polygons: PolygonScan,
     /// A share for each pixel, gathered while shadows or a long line are drawn; all zero at other times.
     mask: Vec<u8>,
@@ -91,157 +91,6 @@ impl Stroke {
     }
 }
 
-/// A limb in the picture: a round cone with depth.
-#[derive(Clone, Copy, Debug)]
-pub(super) struct SolidCone {
-    pub(super) shape: RoundCone,
-    pub(super) key_a: f32,
-    pub(super) key_b: f32,
-    /// How much nearer than its axis the middle of the surface is, in depth keys.
-    pub(super) bulge_a: f32,
-    pub(super) bulge_b: f32,
-}
-
-/// How a limb looks.
-#[derive(Clone, Copy, Debug)]
-pub(super) struct SolidStyle {
-    pub(super) color: Color,
-    /// Colour of the flat mark near end `b`; none for balls.
-    pub(super) mark: Option<Color>,
-    /// A ring of this width (pixels) and colour just inside the outline.
-    pub(super) ring: Option<(f32, Color)>,
-    /// Width of the dark edge laid on what stands well behind the limb, pixels.
-    pub(super) halo: f32,
-}
-
-impl SolidCone {
-    /// The two ends as balls, the far one first: what shows of a limb that points at the eye.
-    fn balls_from_back(&self) -> [Self; 2] {
-        let ball = |at: Vec2, radius: f32, key: f32, bulge: f32| Self {
-            shape: RoundCone { a: at, b: at, radius_a: radius, radius_b: radius },
-            key_a: key,
-            key_b: key,
-            bulge_a: bulge,
-            bulge_b: bulge,
-        };
-        let a = ball(self.shape.a, self.shape.radius_a, self.key_a, self.bulge_a);
-        let b = ball(self.shape.b, self.shape.radius_b, self.key_b, self.bulge_b);
-        if self.key_a < self.key_b { [a, b] } else { [b, a] }
-    }
-}
-
-/// How many pixels of a row are worked out at a time: plain loops over so many numbers become vector instructions.
-const LANES: usize = 8;
-
-/// Light from the upper left, a little before the figure; x right, y down, z to the viewer. Unit length.
-const LIGHT: [f32; 3] = [-0.40, -0.62, 0.675];
-
-/// A limb's surface, ready for its pixels.
-struct Surface {
-    frame: ConeFrame,
-    key: [f32; 2],
-    bulge: [f32; 2],
-    /// The light along the limb's axis, across it and towards the viewer.
-    light: [f32; 3],
-}
-
-/// What [`LANES`] neighbouring pixels see of a limb.
-struct Lanes {
-    /// Covered share, 0..=255.
-    alpha: [u32; LANES],
-    /// Brightness, an index into [`Tones`].
-    tone: [u32; LANES],
-    /// Depth of the surface.
-    key: [f32; LANES],
-    /// Depth behind which something counts as well behind the limb.
-    behind: [f32; LANES],
-    /// To the outline, pixels; negative inside.
-    distance: [f32; LANES],
-}
-
-impl Surface {
-    fn new(cone: &SolidCone, frame: ConeFrame) -> Self {
-        let axis = frame.axis();
-        let along = LIGHT[0] * axis.x + LIGHT[1] * axis.y;
-        let across = LIGHT[1] * axis.x - LIGHT[0] * axis.y;
-        Self {
-            frame,
-            key: [cone.key_a, cone.key_b - cone.key_a],
-            bulge: [cone.bulge_a, cone.bulge_b - cone.bulge_a],
-            light: [along, across, LIGHT[2]],
-        }
-    }
-
-    #[inline]
-    fn lanes(&self, start: Vec2) -> Lanes {
-        let mut lanes = Lanes {
-            alpha: [0; LANES],
-            tone: [0; LANES],
-            key: [0.0; LANES],
-            behind: [0.0; LANES],
-            distance: [0.0; LANES],
-        };
-        for lane in 0..LANES {
-            let sample = self.frame.sample(Vec2::new(start.x + lane as f32, start.y));
-            // On the rim a pixel's middle may lie outside: its normal is then held to unit length.
-            let inverse = 1.0 / sample.radius.max(sample.out_length).max(0.25);
-            let (along, across) = (sample.out.x * inverse, sample.out.y * inverse);
-            let z = (1.0 - along * along - across * across).max(0.0).sqrt();
-            let toward = along * self.light[0] + across * self.light[1] + z * self.light[2];
-            let axis_key = self.key[0] + self.key[1] * sample.t;
-            let bulge = self.bulge[0] + self.bulge[1] * sample.t;
-            lanes.distance[lane] = sample.distance;
-            lanes.key[lane] = axis_key + bulge * z;
-            lanes.behind[lane] = axis_key - 2.0 * bulge;
-            lanes.alpha[lane] = to_byte((0.5 - sample.distance).clamp(0.0, 1.0) * 255.0);
-            // Wrapped diffuse light keeps the shaded side legible; the z term darkens every outline a little, which
-            // is what separates two crossing limbs of one colour.
-            let factor = 0.26 + 0.62 * (0.5 + 0.5 * toward) + 0.22 * z;
-            lanes.tone[lane] = to_byte((factor * TONES_AT_ONE).clamp(0.0, 255.0));
-        }
-        lanes
-    }
-}
-
-/// The nearest whole number to `value` in 0..=255. Adding 2²³ leaves no bits for a fraction, so the whole number
-/// stands in the low bits; unlike `as` this works on several numbers at a time.
-#[inline]
-pub(super) const fn to_byte(value: f32) -> u32 {
-    (value + 8_388_608.0).to_bits() & 0xFF
-}
-
-/// The tone that stands for a brightness of 1.
-const TONES_AT_ONE: f32 = 225.0;
-
-/// A colour at 256 brightnesses.
-struct Tones([[u8; 3]; 256]);
-
-impl Tones {
-    fn new(color: Color) -> Self {
-        let scale = |channel: u8, tone: usize| {
-            (f32::from(channel) * tone as f32 * (1.0 / TONES_AT_ONE) + 0.5).min(255.0) as u8
-        };
-        Self(std::array::from_fn(|tone| [scale(color.r, tone), scale(color.g, tone), scale(color.b, tone)]))
-    }
-}
-
-/// The flat band across a limb near its end: its place leaves room for the round end and for the next limb.
-struct Mark {
-    at: f32,
-    half: f32,
-    tones: Tones,
-}
-
-impl Mark {
-    fn new(cone: &SolidCone, style: &SolidStyle) -> Option<Self> {
-        let length = cone.shape.a.distance(cone.shape.b);
-        let end_radius = cone.shape.radius_b;
-        let color = style.mark.filter(|_| length > 5.0 * end_radius + 4.0)?;
-        let half = (0.30 * end_radius).max(0.75);
-        Some(Self { at: length - 2.2 * end_radius.max(1.0) - half, half, tones: Tones::new(color) })
-    }
-}
-
 impl Canvas {
     /// A canvas of one colour on which nothing stands.
     pub fn new(width: usize, height: usize, color: Color) -> Self {
@@ -272,72 +121,6 @@ impl Canvas {
     /// Height in pixels.
     pub fn height(&self) -> usize {
         self.image.height()
-    }
-
-    /// Draws a limb with light, depth and a soft outline. Limbs should come from back to front: depth is right in any
-    /// order, but outlines are blended with what is there already.
-    pub(super) fn solid(&mut self, cone: &SolidCone, style: &SolidStyle) {
-        if cone.shape.is_swallowed() && cone.shape.a != cone.shape.b {
-            let plain = SolidStyle { mark: None, ..*style };
-            for ball in cone.balls_from_back() {
-                self.solid(&ball, &plain);
-            }
-            return;
-        }
-        let (width, height) = (self.width(), self.height());
-        let (pixels, depth) = (self.image.pixels_mut(), &mut self.depth[..]);
-        let frame = cone.shape.frame();
-        let surface = Surface::new(cone, frame);
-        let tones = Tones::new(style.color);
-        let mark = Mark::new(cone, style);
-        let halo = style.halo.max(0.5);
-        cone.shape.rows(&frame, width, height, halo, |row, columns, first| {
-            let span = row * width + columns.start..row * width + columns.end;
-            let chunks = pixels[span.clone()].chunks_mut(LANES).zip(depth[span].chunks_mut(LANES));
-            for (chunk, (pixels, depths)) in chunks.enumerate() {
-                let start = Vec2::new(first.x + (chunk * LANES) as f32, first.y);
-                let lanes = surface.lanes(start);
-                for (lane, (pixel, standing)) in pixels.iter_mut().zip(depths).enumerate() {
-                    let alpha = lanes.alpha[lane];
-                    if alpha == 0 {
-                        // Beside the limb: darken what stands well behind it.
-                        let near = halo - lanes.distance[lane];
-                        if near > 0.0 && *standing != FAR && *standing < lanes.behind[lane] {
-                            mix_pixel(pixel, [0, 0, 0], (near / halo * 110.0) as u32);
-                        }
-                        continue;
-                    }
-                    let key = lanes.key[lane];
-                    if key <= *standing {
-                        continue;
-                    }
-                    let tone = lanes.tone[lane] as usize;
-                    let mut rgb = tones.0[tone.min(255)];
-                    if let Some(mark) = &mark {
-                        let along = frame.along(start + Vec2::new(lane as f32, 0.0));
-                        let inside = (mark.half + 0.5 - (along - mark.at).abs()).clamp(0.0, 1.0);
-                        if inside > 0.0 {
-                            rgb = mix_rgb(rgb, mark.tones.0[tone.min(255)], inside);
-                        }
-                    }
-                    if let Some((ring, color)) = style.ring {
-                        let inside = (lanes.distance[lane] + ring + 0.5).clamp(0.0, 1.0);
-                        if inside > 0.0 {
-                            rgb = mix_rgb(rgb, [color.r, color.g, color.b], inside);
-                        }
-                    }
-                    if alpha == 255 {
-                        *pixel = [rgb[0], rgb[1], rgb[2], 255];
-                        *standing = key;
-                    } else {
-                        mix_pixel(pixel, rgb, alpha);
-                        if alpha >= 128 {
-                            *standing = key;
-                        }
-                    }
-                }
-            }
-        });
     }
 
     /// Draws a line between two places; `ink(t)` is the share of its opacity at `t` of the way (0..=1 in pixels).
@@ -489,12 +272,6 @@ impl Canvas {
     }
 }
 
-#[inline]
-fn mix_rgb(from: [u8; 3], to: [u8; 3], weight: f32) -> [u8; 3] {
-    let mix = |a: u8, b: u8| (f32::from(a) + (f32::from(b) - f32::from(a)) * weight + 0.5) as u8;
-    [mix(from[0], to[0]), mix(from[1], to[1]), mix(from[2], to[2])]
-}
-
 /// The share of its opacity something keeps at depth `key` on a pixel where something stands at `standing`.
 #[inline]
 fn hidden_share(hidden: Hidden, key: f32, standing: f32) -> f32 {
@@ -544,47 +321,6 @@ mod tests {
     use crate::raster::camera::Camera;
 
     const WHITE: Color = Color::rgb(0xFF_FF_FF);
-    const RED: Color = Color::rgb(0xFF_00_00);
-
-    fn limb(a: [f32; 2], b: [f32; 2], key: f32) -> SolidCone {
-        SolidCone {
-            shape: RoundCone { a: a.into(), b: b.into(), radius_a: 5.0, radius_b: 5.0 },
-            key_a: key,
-            key_b: key,
-            bulge_a: 0.01,
-            bulge_b: 0.01,
-        }
-    }
-
-    fn plain(color: Color) -> SolidStyle {
-        SolidStyle { color, mark: None, ring: None, halo: 0.5 }
-    }
-
-    #[test]
-    fn the_nearer_limb_wins_in_either_order() {
-        let near = (limb([10.0, 30.0], [50.0, 30.0], 2.0), plain(RED));
-        let far = (limb([30.0, 10.0], [30.0, 50.0], 1.0), plain(WHITE));
-        for order in [[near, far], [far, near]] {
-            let mut canvas = Canvas::new(60, 60, Color::rgb(0));
-            for (cone, style) in order {
-                canvas.solid(&cone, &style);
-            }
-            let crossing = canvas.image.pixel(30, 30).unwrap();
-            assert!(crossing[0] > 150 && crossing[1] == 0, "{crossing:?}");
-            assert!(canvas.image.pixel(30, 15).unwrap()[1] > 150);
-        }
-    }
-
-    #[test]
-    fn a_limb_seen_end_on_shows_the_nearer_end() {
-        let mut cone = limb([30.0, 30.0], [31.0, 30.0], 1.0);
-        (cone.shape.radius_b, cone.key_b) = (2.0, 3.0);
-        let mut canvas = Canvas::new(60, 60, Color::rgb(0));
-        canvas.solid(&cone, &plain(WHITE));
-        let depth_at_middle = canvas.depth[30 * 60 + 31];
-        assert!(depth_at_middle > 2.9, "{depth_at_middle}");
-        assert!(canvas.image.pixel(34, 30).unwrap()[0] > 100);
-    }
 
     #[test]
     fn hidden_lines_are_cut_faint_or_shown() {
@@ -593,10 +329,9 @@ mod tests {
         let behind = [target - view.back + view.right, target - view.back - view.right];
         let ink_behind = |hidden| {
             let mut canvas = Canvas::new(60, 60, Color::rgb(0));
-            canvas.solid(&limb([30.0, 10.0], [30.0, 50.0], view.key(view.distance)), &plain(RED));
-            let before = canvas.image.pixel(30, 30).unwrap()[2];
+            canvas.depth.fill(view.key(view.distance));
             canvas.polyline(&view, &behind, &Stroke { color: WHITE, width: 2.0, dash: None, hidden });
-            canvas.image.pixel(30, 30).unwrap()[2] - before
+            canvas.image.pixel(30, 30).unwrap()[2]
         };
         assert_eq!(ink_behind(Hidden::Cut), 0);
         assert_eq!(ink_behind(Hidden::Shown), 255);

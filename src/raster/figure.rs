@@ -3,7 +3,8 @@
 use glam::{DVec2, DVec3};
 
 use crate::raster::camera::{Bounds, View};
-use crate::raster::canvas::{Canvas, Dash, Hidden, SolidCone, SolidStyle, Spot, Stroke};
+use crate::raster::canvas::{Canvas, Dash, Hidden, Spot, Stroke};
+use crate::raster::limb::{SolidCone, SolidStyle};
 use crate::raster::palette::{Color, Theme};
 use crate::raster::shape::RoundCone;
 use crate::skeleton::{Skeleton, WorldJoint};
@@ -189,6 +190,9 @@ pub(super) fn solid_cone(
 pub(super) fn draw_figures(canvas: &mut Canvas, view: &View, figures: &[&Figure], theme: &Theme, scale: f32) {
     let mut solids: Vec<(f32, SolidCone, SolidStyle)> = Vec::new();
     for figure in figures {
+        let depth_of = |limb: &FigureLimb| view.to_view(limb.from.midpoint(limb.to)).z;
+        let depths = figure.limbs.iter().map(depth_of).filter(|depth| depth.is_finite());
+        let nearest_depth = depths.fold(f64::INFINITY, f64::min);
         for limb in &figure.limbs {
             let cone = match figure.style {
                 FigureStyle::After => solid_cone(view, limb, figure.girth, 1.0, 0.75 * scale),
@@ -196,8 +200,10 @@ pub(super) fn draw_figures(canvas: &mut Canvas, view: &View, figures: &[&Figure]
                 FigureStyle::Ghost => None,
             };
             if let Some(cone) = cone {
-                let nearest = cone.key_a.midpoint(cone.key_b);
-                solids.push((nearest, cone, limb_style(figure, limb, theme, scale)));
+                let mut style = limb_style(figure, limb, theme, scale);
+                let behind = (depth_of(limb) - nearest_depth) / figure.girth.long_limb;
+                style.color = style.color.mix(theme.background, fade(behind));
+                solids.push((cone.key_a.midpoint(cone.key_b), cone, style));
             }
         }
     }
@@ -208,6 +214,12 @@ pub(super) fn draw_figures(canvas: &mut Canvas, view: &View, figures: &[&Figure]
     for figure in figures.iter().filter(|figure| figure.style == FigureStyle::Ghost) {
         draw_ghost(canvas, view, figure, theme, scale);
     }
+}
+
+/// How much of the background a limb takes on that is so many long limbs behind the figure's nearest one: the far arm
+/// is a little paler than the near one.
+fn fade(behind: f64) -> f32 {
+    (0.11 * behind).clamp(0.0, 0.32) as f32
 }
 
 fn limb_style(figure: &Figure, limb: &FigureLimb, theme: &Theme, scale: f32) -> SolidStyle {
@@ -225,7 +237,7 @@ fn limb_style(figure: &Figure, limb: &FigureLimb, theme: &Theme, scale: f32) -> 
         color,
         mark: (is_solid && !is_ball).then(|| color.mix(Color::rgb(0), 0.45)),
         ring: is_chosen.then_some((1.25 * scale, theme.text)),
-        halo: if is_solid { 2.5 * scale } else { 0.5 },
+        halo: if is_solid { 3.0 * scale } else { 0.5 },
     }
 }
 

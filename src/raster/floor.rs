@@ -3,9 +3,9 @@
 use glam::{DVec3, Vec2};
 
 use crate::raster::camera::{Bounds, Lens, View};
-use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke, to_byte};
+use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke};
 use crate::raster::figure::{Figure, solid_cone};
-use crate::raster::image::mix_pixel;
+use crate::raster::image::{mix_pixel, to_byte};
 use crate::raster::palette::Theme;
 
 /// A square grid on a level floor.

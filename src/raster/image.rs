@@ -175,6 +175,13 @@ fn over_premultiplied(under: [u8; 4], over: [u8; 4]) -> [u8; 4] {
     out
 }
 
+/// The nearest whole number to `value` in 0..=255. Adding 2²³ leaves no bits for a fraction, so the whole number
+/// stands in the low bits; unlike `as` this works on several numbers at a time.
+#[inline]
+pub(super) const fn to_byte(value: f32) -> u32 {
+    (value + 8_388_608.0).to_bits() & 0xFF
+}
+
 /// `color` over `pixel`, weighted by `coverage` in 0..=1.
 #[inline]
 pub(super) fn blend_pixel(pixel: &mut [u8; 4], color: Color, coverage: f32) {

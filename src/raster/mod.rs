@@ -11,6 +11,7 @@ mod disc;
 mod figure;
 mod floor;
 mod image;
+mod limb;
 pub mod palette;
 mod plot;
 mod scene_view;

@@ -124,6 +124,8 @@ pub fn contact_strip(moments: &[Moment], style: &StripStyle) -> Vec<Tile> {
         scene.figures.clone_from(&moment.figures);
         scene.tip_paths.clone_from(&style.tip_paths);
         render_into(&scene, &mut canvas);
+        // The floor runs on beyond the picture: a thin frame says where the picture ends.
+        Area::of(&canvas).outline(&mut canvas, style.scale.round().max(1.0), style.theme.grid);
         tiles.push(Tile { caption: moment.caption.clone(), image: canvas.image.clone() });
     }
     tiles

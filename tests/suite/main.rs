@@ -5,6 +5,8 @@
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
 //! | `gltf` | glTF and GLB files: reading, patching, the validator |
+//! | `golden` | comparing a picture with the one a person accepted |
+//! | `raster` | small pictures of one subject each |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
 //! | `rotor_practice` | facts of the trade about reflections, planes, signs and order |
@@ -15,6 +17,8 @@
 mod bvh;
 mod demo;
 mod gltf;
+mod golden;
+mod raster;
 mod rotor_checks;
 mod rotor_methods;
 mod rotor_practice;
