@@ -4,6 +4,8 @@
 //! |---|---|
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
+//! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
+//! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
 //! | `gltf` | glTF and GLB files: reading, patching, the validator |
 //! | `golden` | comparing a picture with the one a person accepted |
 //! | `raster` | small pictures of one subject each |
@@ -17,6 +19,7 @@
 mod bvh;
 mod demo;
 mod gltf;
+mod gltf_write;
 mod golden;
 mod raster;
 mod rotor_checks;

@@ -1,0 +1,198 @@
+//! Tracks to samplers: key times and values of 32 bits, with one of glTF's three interpolations.
+
+use std::borrow::Cow;
+
+use glam::DVec3;
+
+use crate::clip::{PathKind, Paths, RotationTrack, Times, VectorPath, VectorTrack};
+use crate::rotor::{Rotor, slerp};
+
+use super::tracks::Interpolation;
+
+/// How far a curve that glTF can't say may be from the straight pieces that stand for it.
+const BAKE_TOLERANCE_RAD: f64 = 1e-4;
+/// A segment is halved at most this often, into 256 pieces.
+const MAX_HALVINGS: u32 = 8;
+
+/// What a sampler holds, ready to be written.
+#[derive(Clone, Debug)]
+pub(super) struct Curve {
+    /// Key times in seconds, strictly rising.
+    pub secs: Vec<f32>,
+    /// Numbers of the output accessor.
+    pub values: Vec<f32>,
+    /// `VEC3` or `VEC4`.
+    pub kind: &'static str,
+    /// Elements of the output accessor.
+    pub count: usize,
+    /// The interpolation.
+    pub interpolation: Interpolation,
+    /// Keys that fell together with the next when their times were rounded to 32 bits.
+    pub n_merged: usize,
+}
+
+impl Curve {
+    /// Of turns. Keys keep their numbers, rounded to 32 bits; signs stay.
+    pub(super) fn of_rotation(track: &RotationTrack) -> Self {
+        let track = playable(track);
+        let quaternion = |rotor: Rotor| rotor.to_xyzw().map(|number| number as f32);
+        let interpolation = match (track.paths.of(0), &track.tangents) {
+            (PathKind::Hold, _) => Interpolation::Step,
+            (PathKind::Cubic, Some(_)) => Interpolation::CubicSpline,
+            _ => Interpolation::Linear,
+        };
+        let per_key = |key: usize| match (&track.tangents, interpolation) {
+            (Some(tangents), Interpolation::CubicSpline) => {
+                vec![quaternion(tangents[key][0]), quaternion(track.keys[key]), quaternion(tangents[key][1])]
+            }
+            _ => vec![quaternion(track.keys[key])],
+        };
+        Self::new(&track.times, "VEC4", interpolation, per_key)
+    }
+
+    /// Of places or sizes.
+    pub(super) fn of_vector(track: &VectorTrack) -> Self {
+        let vector = |v: DVec3| v.to_array().map(|number| number as f32);
+        let interpolation = match (track.path, &track.tangents) {
+            (VectorPath::Hold, _) => Interpolation::Step,
+            (VectorPath::Cubic, Some(_)) => Interpolation::CubicSpline,
+            _ => Interpolation::Linear,
+        };
+        let per_key = |key: usize| match (&track.tangents, interpolation) {
+            (Some(tangents), Interpolation::CubicSpline) => {
+                vec![vector(tangents[key][0]), vector(track.keys[key]), vector(tangents[key][1])]
+            }
+            _ => vec![vector(track.keys[key])],
+        };
+        Self::new(&track.times, "VEC3", interpolation, per_key)
+    }
+
+    fn new<const N: usize>(
+        times: &Times,
+        kind: &'static str,
+        interpolation: Interpolation,
+        per_key: impl Fn(usize) -> Vec<[f32; N]>,
+    ) -> Self {
+        let rounded: Vec<f32> = times.iter().map(|secs| secs as f32).collect();
+        // Of keys that fall together the last is kept, as on reading.
+        let kept: Vec<usize> = (0..rounded.len())
+            .filter(|&key| rounded.get(key + 1).is_none_or(|next| *next > rounded[key]))
+            .collect();
+        let elements: Vec<[f32; N]> = kept.iter().flat_map(|&key| per_key(key)).collect();
+        Self {
+            secs: kept.iter().map(|&key| rounded[key]).collect(),
+            count: elements.len(),
+            values: elements.into_iter().flatten().collect(),
+            kind,
+            interpolation,
+            n_merged: rounded.len() - kept.len(),
+        }
+    }
+
+    /// Whether both would be written with the very same bits.
+    pub(super) fn is_same(&self, other: &Self) -> bool {
+        self.interpolation == other.interpolation
+            && self.kind == other.kind
+            && self.has_times_of(other)
+            && bits(&self.values).eq(bits(&other.values))
+    }
+
+    /// Whether both have the same key times to the bit.
+    pub(super) fn has_times_of(&self, other: &Self) -> bool {
+        bits(&self.secs).eq(bits(&other.secs))
+    }
+}
+
+/// The bits of floats: equal for what is not a number too.
+pub(super) fn bits(floats: &[f32]) -> impl Iterator<Item = u32> {
+    floats.iter().map(|float| float.to_bits())
+}
+
+/// The track itself where one interpolation says all of it; else a track of short arcs that follows it.
+fn playable(track: &RotationTrack) -> Cow<'_, RotationTrack> {
+    let n_segments = track.keys.len().saturating_sub(1);
+    let first = track.paths.of(0);
+    let is_one_kind = (1..n_segments).all(|segment| track.paths.of(segment) == first);
+    if n_segments == 0 || (is_one_kind && first != PathKind::Squad) {
+        return Cow::Borrowed(track);
+    }
+    let mut secs = Vec::new();
+    let mut keys = Vec::new();
+    for segment in 0..n_segments {
+        let (start, end) = (track.times.at(segment), track.times.at(segment + 1));
+        secs.push(start);
+        keys.push(track.keys[segment]);
+        match track.paths.of(segment) {
+            PathKind::Slerp => {}
+            PathKind::Hold => {
+                // Held until the last moment that 32 bits can tell from the next key.
+                let before = f64::from((end as f32).next_down());
+                if before > start {
+                    secs.push(before);
+                    keys.push(track.keys[segment]);
+                }
+            }
+            PathKind::Squad | PathKind::Cubic => {
+                let ends = [(start, track.at(start)), (end, track.at(end))];
+                halve(track, ends, MAX_HALVINGS, &mut secs, &mut keys);
+            }
+        }
+    }
+    secs.push(track.times.at(n_segments));
+    keys.push(track.keys[n_segments]);
+    Cow::Owned(RotationTrack::from_rotors(Times::Listed(secs.into()), keys))
+}
+
+/// Adds the keys between two times that a curve of short arcs needs to stay near the track.
+fn halve(
+    track: &RotationTrack,
+    [(start, a), (end, b)]: [(f64, Rotor); 2],
+    halvings: u32,
+    secs: &mut Vec<f64>,
+    keys: &mut Vec<Rotor>,
+) {
+    let is_near = |share: f64| {
+        track.at(start + (end - start) * share).turn_to(slerp(a, b, share)) <= BAKE_TOLERANCE_RAD
+    };
+    if halvings == 0 || [0.25, 0.5, 0.75].into_iter().all(is_near) {
+        return;
+    }
+    let middle = f64::midpoint(start, end);
+    let key = track.at(middle);
+    halve(track, [(start, a), (middle, key)], halvings - 1, secs, keys);
+    secs.push(middle);
+    keys.push(key);
+    halve(track, [(middle, key), (end, b)], halvings - 1, secs, keys);
+}
+
+/// A track of unit rotors whose signs follow one another, with keys put in where neighbours are more than
+/// `largest_arc_rad` apart, so that every player turns the same way.
+pub(super) fn unrolled(track: &RotationTrack, largest_arc_rad: f64) -> RotationTrack {
+    let track = playable(track);
+    if track.paths.of(0) == PathKind::Cubic && track.tangents.is_some() {
+        // The signs and lengths of such keys choose the path.
+        return track.into_owned();
+    }
+    let mut secs: Vec<f64> = Vec::with_capacity(track.keys.len());
+    let mut keys: Vec<Rotor> = Vec::with_capacity(track.keys.len());
+    let mut push = |time: f64, key: Rotor| {
+        keys.push(keys.last().map_or(key, |before| key.aligned_to(*before)));
+        secs.push(time);
+    };
+    let n_keys = track.keys.len();
+    for key in 0..n_keys {
+        let (start, own) = (track.times.at(key), track.sound_key(key));
+        push(start, own);
+        if key + 1 < n_keys && track.paths.of(key) == PathKind::Slerp {
+            let (end, next) = (track.times.at(key + 1), track.sound_key(key + 1));
+            let pieces = (own.turn_to(next) / largest_arc_rad).ceil() as u32;
+            for piece in 1..pieces {
+                let share = f64::from(piece) / f64::from(pieces);
+                push(start + (end - start) * share, slerp(own, next, share).normalize());
+            }
+        }
+    }
+    let path = if track.paths.of(0) == PathKind::Hold { PathKind::Hold } else { PathKind::Slerp };
+    let times = if keys.len() == n_keys { track.times.clone() } else { Times::Listed(secs.into()) };
+    RotationTrack { paths: Paths::Every(path), ..RotationTrack::from_rotors(times, keys) }
+}
