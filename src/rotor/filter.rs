@@ -60,8 +60,8 @@ fn step_shares(kernel: &[f64]) -> Result<Vec<f64>, KernelError> {
         return Err(KernelError::EvenKernel { found: kernel.len() });
     }
     let sum: f64 = kernel.iter().sum();
-    // Written so that NaN is refused too.
-    if !((sum - 1.0).abs() <= 1e-9) {
+    let adds_up = (sum - 1.0).abs() <= 1e-9;
+    if !adds_up {
         return Err(KernelError::Sum { found: sum });
     }
     let reach = kernel.len() / 2;

@@ -34,7 +34,9 @@ pub fn chordal_mean(weighted: &[(Rotor, f64)]) -> Option<Mean> {
     let largest = (0..4).max_by(|&i, &j| values[i].total_cmp(&values[j]))?;
     let rotor = Rotor::from_xyzw(vectors.map(|row| row[largest])).try_normalize()?;
     values.sort_by(f64::total_cmp);
-    Some(Mean { rotor, certainty: (values[3] - values[2]) / values.iter().sum::<f64>() })
+    let sum: f64 = values.iter().sum();
+    // A sum of 0 comes of rotors that are none.
+    (sum > 0.0).then(|| Mean { rotor, certainty: (values[3] - values[2]) / sum })
 }
 
 /// The mean with the smallest weighted sum of squared turns: for two rotors it is slerp, at any weights.

@@ -74,7 +74,7 @@ pub enum SplineError {
         /// The turn in radians.
         turn_rad: f64,
     },
-    /// With turns near 180° and uneven times the rounds that find the rates may not settle.
+    /// With turns near 180°, or end rates far beyond what the keys need, the rounds that find the rates may not settle.
     #[error(
         "expected the rates at the keys to settle, they still change by {change} rad/s after {rounds} rounds"
     )]
@@ -227,9 +227,13 @@ fn rates_at_keys(secs: &[f64], arcs: &[DVec3], ends: EndRates) -> Result<Vec<DVe
         return Ok(rates);
     }
     let mut change = f64::INFINITY;
-    for _ in 0..MOST_ROUNDS {
+    for round in 1..=MOST_ROUNDS {
         let next = solve_round(secs, arcs, &rates);
         let size = next.iter().fold(0.0, |size: f64, rate| size.max(rate.length()));
+        // `max` passes over NaN, and a length overflows long before its parts do.
+        if !(next.iter().all(|rate| rate.is_finite()) && size.is_finite()) {
+            return Err(SplineError::NotSettled { change: f64::INFINITY, rounds: round });
+        }
         let moved = next.iter().zip(&rates).fold(0.0, |moved: f64, (a, b)| moved.max((*a - *b).length()));
         rates = next;
         // Rounding may keep it moving a little for ever: there, it is done when it moves no less than before.

@@ -15,7 +15,7 @@
 //! | `rotor_properties` | what holds for every rotor, at random ones that lean to the hard places |
 //! | `snags` | faults found and mended: built clips with one fault, and the real files with what is known of them |
 //! | `strategies` | the random values; no tests of its own |
-//! | `support` | where the outside files are, and comparing with a tolerance; no tests of its own |
+//! | `support` | where the outside files are, and comparing with a tolerance; tested by itself only |
 mod bvh;
 mod demo;
 mod gltf;

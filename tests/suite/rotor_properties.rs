@@ -6,8 +6,8 @@ use glam::{DMat3, DVec3};
 use proptest::prelude::*;
 use proptest::test_runner::RngSeed;
 use turnwright::rotor::{
-    Axis, Bivector, EndRates, EulerOrder, RotationSpline, Rotor, SwingTwist, chordal_mean, convolve,
-    geodesic_mean, hermite, slerp, slerp_as_signed, squad, squad_inner,
+    Axis, Bivector, EndRates, EulerOrder, RotationSpline, Rotor, SplineError, SwingTwist, chordal_mean,
+    convolve, geodesic_mean, hermite, slerp, slerp_as_signed, squad, squad_inner,
 };
 
 use crate::strategies::{angle, euler_order, tiny, two_rotors, two_vectors, unit_rotor, unit_vector};
@@ -406,6 +406,7 @@ fn nothing_to_work_on_gives_no_turn() {
     assert_eq!(chordal_mean(&[(Rotor::IDENTITY, 0.0)]), None);
     assert_eq!(chordal_mean(&[(Rotor::IDENTITY, 1.0), (Rotor::IDENTITY, -1.0)]), None);
     assert_eq!(chordal_mean(&[(Rotor::IDENTITY, 2.0), (Axis::X.rotor(1.0), -1.0)]), None);
+    assert_eq!(chordal_mean(&[(Rotor::new(0.0, 0.0, 0.0, 0.0), 1.0)]), None);
     assert_eq!(chordal_mean(&[(nan, 1.0)]), None);
     assert_eq!(geodesic_mean(&[(Rotor::IDENTITY, f64::NAN)]), None);
 }
@@ -444,6 +445,19 @@ fn a_spline_says_what_is_wrong_with_its_keys() {
         &[0.0, 1.0],
         &[id, half_turn],
         "expected less than half a turn from key 0 to the next, found 3.141592653589793 rad",
+    );
+}
+
+#[test]
+fn a_spline_that_finds_no_rates_says_so() {
+    // End rates far beyond what the keys need: a thousand radians per second against two.
+    let keys = [Rotor::IDENTITY, Axis::X.rotor(2.0), Axis::Y.rotor(2.0), Axis::Z.rotor(-2.0)];
+    let wild = EndRates::Given(Bivector::new(0.0, 1000.0, 0.0), Bivector::new(-1000.0, 0.0, 0.0));
+    let error = RotationSpline::new(&[0.0, 1.0, 2.0, 3.0], &keys, wild).expect_err("no rates");
+    assert!(matches!(error, SplineError::NotSettled { .. }), "{error}");
+    assert!(
+        error.to_string().starts_with("expected the rates at the keys to settle, they still change by "),
+        "{error}"
     );
 }
 

@@ -169,3 +169,31 @@ pub(crate) fn list(value: &Value) -> &[Value] {
 pub(crate) fn unit_rotor(value: &Value) -> Rotor {
     Rotor::from_xyzw(numbers(value)).try_normalize().unwrap_or_else(|| panic!("no rotation: {value}"))
 }
+
+#[test]
+fn a_missing_file_is_skipped_here_and_a_failure_in_ci() {
+    let asked = std::panic::catch_unwind(|| shared("checks/no such file"));
+    match std::env::var_os("CI") {
+        Some(_) => assert!(asked.is_err(), "CI has to fail: {asked:?}"),
+        None => assert_eq!(asked.expect("no failure on a newcomer's machine"), None),
+    }
+}
+
+#[test]
+fn a_value_that_is_no_number_is_never_close() {
+    assert!(f64::NAN.distance_to(&1.0).is_nan());
+    assert!([1.0, f64::NAN, 2.0].distance_to(&[1.0, 1.0, 2.0]).is_nan());
+    assert!(Rotor::new(1.0, f64::NAN, 0.0, 0.0).distance_to(&Rotor::IDENTITY).is_nan());
+}
+
+#[test]
+fn the_turn_between_two_rotors_is_told_without_a_product() {
+    // Common practice: the angle is twice that between the two points on the sphere of four dimensions.
+    for turn in [0.0, 1e-300, 1e-9, 1.0, 3.0] {
+        let rotor = Rotor::from_plane_angles(Bivector::new(0.0, turn, 0.0));
+        for sign in [1.0, -1.0] {
+            let found = rotor.scale(sign).distance_to(&Rotor::IDENTITY);
+            assert!((found - turn).abs() <= 1e-15 * turn, "{found} for {turn}");
+        }
+    }
+}
