@@ -4,11 +4,14 @@
 
 mod address;
 pub mod bvh;
+pub mod csv;
 pub mod disk;
 pub mod gltf;
+mod losses;
 mod note;
 pub mod ron;
 mod source;
+mod turns;
 
 pub use address::ClipAddress;
 pub use note::Note;

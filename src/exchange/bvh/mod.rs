@@ -15,7 +15,6 @@
 
 mod create;
 mod error;
-mod layout;
 mod read;
 mod scanner;
 mod syntax;

@@ -7,11 +7,11 @@ use glam::DVec3;
 
 use crate::clip::{Clip, FileAngles, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
 use crate::exchange::Note;
+use crate::exchange::turns::Turns;
 use crate::rotor::{Axis, Rotor};
 use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use super::error::{BvhError, BvhErrorKind};
-use super::layout::Turns;
 use super::scanner::{Scanner, is_line_end, quoted};
 use super::syntax::{Channel, JointSyntax, MotionHead, hierarchy, motion_head, skip_comments};
 
@@ -314,7 +314,7 @@ fn clip(
     let rows = || values.chunks_exact(columns.max(1));
     let mut tracks = Vec::with_capacity(joints.len());
     for (joint, first) in joints.iter().zip(document.first_columns()) {
-        let turns = Turns::new(&joint.channels);
+        let turns = turns_of(&joint.channels);
         if turns.groups.len() > 3 {
             let axes: String = turns.axes().map(Axis::letter).collect();
             let text = format!("expected at most three turns, found {axes}: put together in this order");
@@ -391,6 +391,14 @@ fn clip(
         duration_secs: times.span().map_or(0.0, |(_, last)| last),
         grid: FrameGrid { times, rate: 1.0 / step_secs },
     }
+}
+
+/// The turns that a joint's channels make; columns count from its first channel.
+pub(super) fn turns_of(channels: &[Channel]) -> Turns {
+    Turns::new(channels.iter().enumerate().filter_map(|(column, channel)| match channel {
+        Channel::Rotation(axis) => Some((column, *axis)),
+        Channel::Position(_) | Channel::Size => None,
+    }))
 }
 
 fn group_sum(row: &[f64], first: usize, columns: &[usize]) -> f64 {

@@ -4,11 +4,11 @@ use std::io::Write as _;
 
 use crate::clip::{Clip, RotationTrack};
 use crate::exchange::Note;
+use crate::exchange::turns::Turns;
 use crate::rotor::{Axis, Rotor};
 
 use super::create::from_clip;
-use super::layout::Turns;
-use super::read::Document;
+use super::read::{Document, turns_of};
 use super::scanner::{Number, Scanner};
 use super::syntax::Channel;
 
@@ -124,7 +124,7 @@ impl JointRows<'_> {
     }
 
     fn turns(&mut self, frames: usize, notes: &mut Vec<Note>) {
-        let turns = Turns::new(self.channels());
+        let turns = turns_of(self.channels());
         let Some(track) = self.after.rotation(self.joint) else { return };
         let old = self.before.rotation(self.joint);
         let keyed = track.times == self.after.grid.times;

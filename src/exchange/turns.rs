@@ -1,10 +1,8 @@
-//! How the rotation channels of a joint make one turn.
+//! How the angles that a file has for a joint make one turn, and which angles come nearest to a turn.
 
 use crate::rotor::{Axis, EulerOrder, Rotor};
 
-use super::syntax::Channel;
-
-/// The rotation channels of a joint, neighbours about the same axis taken together: they add up.
+/// The angle columns of a joint, neighbours about the same axis taken together: they add up.
 #[derive(Clone, Debug, PartialEq)]
 pub(super) struct Turns {
     /// For each axis in a row of different ones: the columns that add up to its angle.
@@ -12,11 +10,10 @@ pub(super) struct Turns {
 }
 
 impl Turns {
-    /// Of a joint's channels, which are columns of its part of a row from 0.
-    pub(super) fn new(channels: &[Channel]) -> Self {
+    /// Of columns and their axes in the order in which they apply.
+    pub(super) fn new(columns: impl IntoIterator<Item = (usize, Axis)>) -> Self {
         let mut groups: Vec<(Axis, Vec<usize>)> = Vec::new();
-        for (column, channel) in channels.iter().enumerate() {
-            let Channel::Rotation(axis) = *channel else { continue };
+        for (column, axis) in columns {
             match groups.last_mut() {
                 Some((last, columns)) if *last == axis => columns.push(column),
                 _ => groups.push((axis, vec![column])),
@@ -105,7 +102,7 @@ mod tests {
 
     #[test]
     fn fewer_than_three_channels_take_the_nearest_turn_they_can() {
-        let turns = Turns::new(&[Channel::Rotation(Axis::Y), Channel::Rotation(Axis::X)]);
+        let turns = Turns::new([(0, Axis::Y), (1, Axis::X)]);
         let wanted = EulerOrder::new([Axis::Y, Axis::X, Axis::Z]).unwrap().to_rotor([0.7, -0.4, 0.2]);
         let best = turns.nearest(wanted, &[0.0, 0.0]);
         let far = |angles: &[f64]| turns.rotor(angles).turn_to(wanted);
@@ -119,15 +116,7 @@ mod tests {
 
     #[test]
     fn neighbours_about_one_axis_add_up_and_a_fourth_turn_stays() {
-        use Channel::Rotation;
-        let turns = Turns::new(&[
-            Rotation(Axis::Z),
-            Channel::Position(Axis::X),
-            Rotation(Axis::Z),
-            Rotation(Axis::X),
-            Rotation(Axis::Y),
-            Rotation(Axis::Z),
-        ]);
+        let turns = Turns::new([(0, Axis::Z), (2, Axis::Z), (3, Axis::X), (4, Axis::Y), (5, Axis::Z)]);
         assert_eq!(turns.groups[0], (Axis::Z, vec![0, 2]));
         let angles = turns.nearest(turns.rotor(&[10.0, 20.0, 30.0, 40.0]), &[0.0, 0.0, 0.0, 40.0]);
         assert!(angles.iter().zip([10.0, 20.0, 30.0, 40.0]).all(|(a, b)| (a - b).abs() < 1e-9), "{angles:?}");

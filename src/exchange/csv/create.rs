@@ -1,0 +1,121 @@
+//! A new CSV text from any clip.
+
+use std::io::Write as _;
+
+use crate::clip::{Clip, RotationTrack};
+use crate::exchange::Note;
+use crate::exchange::losses;
+use crate::rotor::Rotor;
+use crate::skeleton::{JointKind, Transform};
+
+/// Writes any clip as CSV: the skeleton as lines before the header, then a row for each frame of its grid, with a
+/// quaternion for each joint, and its place where that is animated.
+///
+/// Numbers have as many digits as it takes to read the same number again, so at most 17. Keys that stand at the frames
+/// are written as stored, whatever their sign and length. Notes tell how far the frames are from keys between them, and
+/// of sizes that are animated, which are lost.
+pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
+    let mut notes = Vec::new();
+    let mut bytes = Vec::new();
+    let skeleton = &clip.skeleton;
+    let has_turns =
+        |joint: usize| skeleton.joints()[joint].kind == JointKind::Joint || clip.rotation(joint).is_some();
+    let written: Vec<usize> = (0..skeleton.len())
+        .filter(|&joint| has_turns(joint) || clip.joints[joint].translation.is_some())
+        .collect();
+    for joint in 0..skeleton.len() {
+        bone_lines(clip, joint, &mut bytes);
+    }
+    bytes.extend_from_slice(b"time");
+    for &joint in &written {
+        let mut put = |part: &str| {
+            let name = format!("{}.{part}", skeleton.label(joint));
+            bytes.push(b',');
+            if name.contains([',', '"', '\n', '\r']) || name.trim() != name || name.starts_with('#') {
+                bytes.extend_from_slice(format!("\"{}\"", name.replace('"', "\"\"")).as_bytes());
+            } else {
+                bytes.extend_from_slice(name.as_bytes());
+            }
+        };
+        if clip.joints[joint].translation.is_some() {
+            ["tx", "ty", "tz"].into_iter().for_each(&mut put);
+        }
+        if has_turns(joint) {
+            ["qx", "qy", "qz", "qw"].into_iter().for_each(&mut put);
+        }
+    }
+    bytes.push(b'\n');
+    let times: Vec<f64> = (0..clip.grid.count()).map(|frame| clip.grid.time(frame)).collect();
+    for (frame, &time) in times.iter().enumerate() {
+        bytes.extend_from_slice(number_text(time).as_bytes());
+        for &joint in &written {
+            let mut put = |value: f64| {
+                bytes.push(b',');
+                bytes.extend_from_slice(number_text(value).as_bytes());
+            };
+            let rest = skeleton.joints()[joint].rest;
+            if let Some(track) = &clip.joints[joint].translation {
+                let key = if track.times == clip.grid.times { track.keys.get(frame).copied() } else { None };
+                let place = key.or_else(|| track.at(time)).unwrap_or(rest.translation);
+                place.to_array().into_iter().for_each(&mut put);
+            }
+            if has_turns(joint) {
+                let turn = clip.rotation(joint).map_or(rest.rotation, |track| turn(clip, track, frame, time));
+                turn.to_xyzw().into_iter().for_each(&mut put);
+            }
+        }
+        bytes.push(b'\n');
+    }
+    if let Some(joint) = (0..skeleton.len()).find(|&joint| clip.joints[joint].scale.is_some()) {
+        let text = "expected no animated sizes, as CSV has none, found some: left out";
+        notes.push(Note::new(format!("joint {}", skeleton.label(joint)), text));
+    }
+    losses::resampling(clip, &times, &mut notes);
+    (bytes, notes)
+}
+
+fn turn(clip: &Clip, track: &RotationTrack, frame: usize, time: f64) -> Rotor {
+    let key = if track.times == clip.grid.times { track.keys.get(frame).copied() } else { None };
+    key.unwrap_or_else(|| track.at(time))
+}
+
+/// The lines of a joint and its tips.
+fn bone_lines(clip: &Clip, index: usize, bytes: &mut Vec<u8>) {
+    let skeleton = &clip.skeleton;
+    let joint = &skeleton.joints()[index];
+    // Names end with their line.
+    let name = |joint: usize| skeleton.label(joint).replace(['\n', '\r'], "_");
+    let word = match joint.kind {
+        JointKind::Joint => "joint",
+        JointKind::Carrier => "carrier",
+    };
+    let parent = joint.parent.map_or("-".to_owned(), name);
+    let numbers =
+        |values: &[f64]| values.iter().map(|&value| number_text(value)).collect::<Vec<_>>().join(" ");
+    let Transform { translation, rotation, scale } = joint.rest;
+    // Writing into a Vec can't fail.
+    let _ =
+        write!(bytes, "# {word} {} parent {parent} offset {}", name(index), numbers(&translation.to_array()));
+    if rotation != Rotor::IDENTITY {
+        let _ = write!(bytes, " turn {}", numbers(&rotation.to_xyzw()));
+    }
+    if scale != glam::DVec3::ONE {
+        let _ = write!(bytes, " size {}", numbers(&scale.to_array()));
+    }
+    bytes.push(b'\n');
+    for (tip, place) in joint.tips.iter().enumerate() {
+        let own = name(index);
+        let _ = writeln!(bytes, "# tip {own}_tip{tip} parent {own} offset {}", numbers(&place.to_array()));
+    }
+}
+
+/// The shortest text that reads as the same number; not finite: `nan`.
+pub(super) fn number_text(value: f64) -> String {
+    if !value.is_finite() {
+        "nan".to_owned()
+    } else if value != 0.0 && !(1e-5..1e17).contains(&value.abs()) {
+        format!("{value:e}")
+    } else {
+        value.to_string()
+    }
+}

@@ -1,0 +1,30 @@
+//! Motion as CSV (RFC 4180).
+//!
+//! | columns | meaning |
+//! |---|---|
+//! | `time`, `time_s` | seconds |
+//! | `NAME.qx .qy .qz .qw` | quaternion, in any order |
+//! | `NAME.yz .zx .xy` | plane angles in degrees |
+//! | `NAME.z NAME.x NAME.y` | angles in degrees about moving axes, applied in the order of the columns |
+//! | `NAME.tx .ty .tz` | place relative to the parent; what is missing is the rest place |
+//!
+//! Turns are relative to the parent. Lines `# joint NAME parent NAME offset X Y Z` before the header carry the skeleton;
+//! without them every joint is a root, unless a `NAME_hierarchy.csv` is given beside a `NAME_rot.csv`. Each row is a
+//! frame, at its own time. A quaternion sensor's `Time (s),W,X,Y,Z` is read as one joint.
+
+mod bones;
+mod cells;
+mod columns;
+mod create;
+mod error;
+mod read;
+#[cfg(test)]
+mod tests;
+mod write;
+
+pub use bones::{Bone, hierarchy};
+pub use columns::{CsvOptions, NamedColumns, NoColumns, NoTimeUnit, TimeUnit};
+pub use create::from_clip;
+pub use error::{CsvError, CsvErrorKind};
+pub use read::{Document, read};
+pub use write::write;
