@@ -3,6 +3,7 @@
 //! | module | what belongs there |
 //! |---|---|
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
+//! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
 //! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
 //! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
@@ -17,6 +18,7 @@
 //! | `strategies` | the random values; no tests of its own |
 //! | `support` | where the outside files are, and comparing with a tolerance; tested by itself only |
 mod bvh;
+mod csv;
 mod demo;
 mod gltf;
 mod gltf_write;

@@ -195,7 +195,7 @@ impl JointRows<'_> {
         let old = self.angles(turns, frame);
         let row = self.row(frame);
         for ((angle, old), (_, columns)) in angles.iter().zip(old).zip(&turns.groups) {
-            if angle.to_bits() == old.to_bits() || (angle.is_nan() && old.is_nan()) {
+            if same(*angle, old) {
                 continue;
             }
             let Some((&leading, others)) = columns.split_first() else { continue };
@@ -340,9 +340,9 @@ fn rewritten(
     bytes
 }
 
-/// Equal bit for bit, or both missing.
+/// The same number, or both missing. A text that says 0 says −0 as well.
 fn same(a: f64, b: f64) -> bool {
-    a.to_bits() == b.to_bits() || (a.is_nan() && b.is_nan())
+    a == b || (a.is_nan() && b.is_nan())
 }
 
 /// Fixed notation with 6 decimals.

@@ -270,9 +270,9 @@ fn sensor_columns(
         let places: Vec<usize> = names.iter().filter_map(|name| place(name)).collect();
         <[usize; 4]>::try_from(places).ok()
     })?;
-    let mut times = lower.iter().enumerate().filter_map(|(column, name)| Some((column, time_unit_of(name)?)));
+    let mut times = lower.iter().enumerate().filter_map(|(column, name)| Some((column, unit_text(name)?)));
     let (Some((time, unit)), None) = (times.next(), times.next()) else { return None };
-    let Some(unit) = options.time_unit.or(unit) else {
+    let Some(unit) = options.time_unit.or_else(|| unit_of(&lower[time], unit)) else {
         let expected = "a time with its unit, or --time-unit s, ms or us";
         return Some(Err(CsvError::unexpected(line, expected, quoted(&header[time]))));
     };
@@ -280,14 +280,19 @@ fn sensor_columns(
     Some(one_joint(header, line, &named, unit, notes))
 }
 
-/// Whether a name (in lower case) is one of a time column, and the unit that it tells.
-fn time_unit_of(name: &str) -> Option<Option<TimeUnit>> {
+/// What a name (in lower case) of a time column says of its unit, nothing perhaps; `None` for any other name.
+fn unit_text(name: &str) -> Option<&str> {
     let rest = name.strip_prefix("timestamp").or(name.strip_prefix("time"))?;
     let unit = rest.trim_matches(|c: char| c.is_whitespace() || "()[]_".contains(c));
+    (unit.is_empty() || unit_of(name, unit).is_some()).then_some(unit)
+}
+
+/// Plain `time` is in seconds, as in our own files; a clock's `timestamp` may be in anything.
+fn unit_of(name: &str, unit: &str) -> Option<TimeUnit> {
     match unit {
-        "" => Some((name == "time").then_some(TimeUnit::Seconds)),
-        "seconds" => Some(Some(TimeUnit::Seconds)),
-        _ => unit.parse().ok().map(Some),
+        "" => (name == "time").then_some(TimeUnit::Seconds),
+        "seconds" => Some(TimeUnit::Seconds),
+        _ => unit.parse().ok(),
     }
 }
 

@@ -113,7 +113,9 @@ fn bone_lines(clip: &Clip, index: usize, bytes: &mut Vec<u8>) {
 pub(super) fn number_text(value: f64) -> String {
     if !value.is_finite() {
         "nan".to_owned()
-    } else if value != 0.0 && !(1e-5..1e17).contains(&value.abs()) {
+    } else if value == 0.0 {
+        "0".to_owned()
+    } else if !(1e-5..1e17).contains(&value.abs()) {
         format!("{value:e}")
     } else {
         value.to_string()

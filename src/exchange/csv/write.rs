@@ -327,7 +327,7 @@ fn quoted_again(text: &[u8]) -> Vec<u8> {
     }
 }
 
-/// Equal bit for bit, or both missing.
+/// The same number, or both missing. A text that says 0 says −0 as well.
 fn same(a: f64, b: f64) -> bool {
-    a.to_bits() == b.to_bits() || (a.is_nan() && b.is_nan())
+    a == b || (a.is_nan() && b.is_nan())
 }
