@@ -6,7 +6,7 @@ use crate::clip::Clip;
 use crate::snag::{Remedy, Snag};
 
 use super::draft::Draft;
-use super::{MendError, numbers, redraw};
+use super::{MendError, numbers, redraw, take_out};
 
 /// `clip` with one snag mended. The same snag in the same clip always gives the same numbers; joints other than the
 /// snag's stay shared, and so does its own when there is nothing to do ([`Remedy::Ask`]).
@@ -66,7 +66,9 @@ pub(super) fn mend(draft: &mut Draft, snag: &Snag) {
         Remedy::NearestAngles => numbers::nearest(draft, first, last),
         Remedy::Redraw => redraw::redraw(draft, first, last),
         Remedy::ShortWay => numbers::short_way(draft, last),
-        Remedy::TakeOut(_) | Remedy::TakeOutAbove(_) | Remedy::Ask => {}
+        Remedy::TakeOut(offset) => take_out::take_out(draft, first, last, |pose| pose * offset),
+        Remedy::TakeOutAbove(offset) => take_out::take_out(draft, first, last, |pose| offset * pose),
+        Remedy::Ask => {}
     }
 }
 

@@ -6,6 +6,7 @@ mod error;
 mod numbers;
 mod redraw;
 mod survey;
+mod take_out;
 
 pub use apply::{apply, apply_all, change_rad};
 pub use error::MendError;

@@ -1,5 +1,6 @@
 //! Finds all snags of a clip, kind by kind, each on what the mends before it left.
 
+use std::collections::BTreeSet;
 use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
 
 use rayon::prelude::*;
@@ -74,9 +75,23 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
             }
         }
     }
+    drop_told_twice(&mut found);
     found.sort_by_key(|(snag, _)| (snag.first_frame, snag.joint, snag.kind, snag.first_key, snag.last_key));
     let (snags, changes_rad) = found.into_iter().unzip();
     Ok(Survey { snags, mended: working, changes_rad })
+}
+
+/// A step of stored angles into or out of a half-turn or spike is no long way of its own.
+fn drop_told_twice(found: &mut Vec<(Snag, f64)>) {
+    let jumps: BTreeSet<(usize, usize)> = found
+        .iter()
+        .filter(|(snag, _)| matches!(snag.kind, SnagKind::HalfTurn | SnagKind::Spike))
+        .flat_map(|(snag, _)| [(snag.joint, snag.first_key), (snag.joint, snag.last_key + 1)])
+        .collect();
+    found.retain(|(snag, _)| {
+        let is_asked = snag.kind == SnagKind::LongWay && snag.remedy == Remedy::Ask;
+        !(is_asked && jumps.contains(&(snag.joint, snag.last_key)))
+    });
 }
 
 #[derive(Default)]

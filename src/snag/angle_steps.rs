@@ -3,7 +3,7 @@
 
 use crate::clip::FileAngles;
 
-use super::branches::{Branches, short};
+use super::branches::{Branches, follow, short};
 use super::scan::Scan;
 
 /// The joint hardly moves below this, whatever its rates.
@@ -14,6 +14,14 @@ const USUAL_STEPS: f64 = 2.5;
 
 /// What is left of a wrap once its whole turns are taken out is never more than this.
 const WRAP_REST_DEG: f64 = 90.0;
+
+/// A step so near a whole turn is a wrap unless the joint jumps.
+const NEAR_WHOLE_DEG: f64 = 40.0;
+const JUMP_DEG: f64 = 60.0;
+
+/// Up to this many keys at the start, and this share of all, a run there is taken for the wrong one: a calibration pose.
+const START_KEYS: usize = 3;
+const START_SHARE: usize = 20;
 
 /// Keys looked at to both sides for the usual step.
 const NEAR_KEYS: usize = 5;
@@ -33,8 +41,76 @@ pub(super) struct AngleStep {
     pub(super) is_wrap: bool,
 }
 
+/// The steps of a joint's angles, sorted out.
+#[derive(Clone, Debug, Default)]
+pub(super) struct SortedSteps {
+    /// Runs `(first, last, turns)` that are whole turns off.
+    pub(super) wraps: Vec<(usize, usize, [i32; 3])>,
+    /// Steps with which the joint really moves.
+    pub(super) moves: Vec<AngleStep>,
+}
+
+/// Pairs each step of a channel with its way back. A pair of which one is a wrap is a run that is whole turns off; so is
+/// all that follows a wrap without a way back. The rest are moves.
+pub(super) fn sorted_steps(scan: &Scan<'_>, angles: &FileAngles) -> SortedSteps {
+    let branches = follow(scan, angles);
+    let steps = angle_steps(scan, angles, &branches);
+    let mut sorted = SortedSteps::default();
+    let mut add = |(first, last): (usize, usize), channel: usize, turns: i32| {
+        let wraps = &mut sorted.wraps;
+        match wraps.iter_mut().rev().find(|run| (run.0, run.1) == (first, last)) {
+            Some(run) => run.2[channel] = turns,
+            None => {
+                let mut all = [0; 3];
+                all[channel] = turns;
+                wraps.push((first, last, all));
+            }
+        }
+    };
+    let mut moves = Vec::new();
+    for channel in 0..3 {
+        // A step out of the usual range goes with one back in, and a step inside it with another.
+        let mut open: [Vec<AngleStep>; 2] = [Vec::new(), Vec::new()];
+        for &step in steps.iter().filter(|step| step.channel == channel) {
+            let lane = &mut open[usize::from(step.leaves != 0)];
+            match lane.pop_if(|way_in| way_in.turns == -step.turns) {
+                Some(way_in) if way_in.is_wrap || step.is_wrap => {
+                    add((way_in.key, step.key - 1), channel, way_in.turns);
+                }
+                Some(way_in) => moves.extend([way_in, step]),
+                None => lane.push(step),
+            }
+        }
+        for step in open.into_iter().flatten() {
+            if !step.is_wrap {
+                moves.push(step);
+                continue;
+            }
+            // What lies outside the usual range is the fault; else the start is right, but for a pose or two.
+            let few = step.key <= START_KEYS && step.key * START_SHARE <= angles.degrees.len();
+            let from_start =
+                step.leaves < 0 || (step.leaves == 0 && few && starts_apart(angles, channel, step.key));
+            if from_start {
+                add((0, step.key - 1), channel, -step.turns);
+            } else {
+                add((step.key, angles.degrees.len() - 1), channel, step.turns);
+            }
+        }
+    }
+    sorted.wraps.sort_unstable();
+    moves.sort_by_key(|step| (step.key, step.channel));
+    sorted.moves = moves;
+    sorted
+}
+
+/// Whether the angle of the first keys has its sign alone: no later step comes back to it.
+fn starts_apart(angles: &FileAngles, channel: usize, until: usize) -> bool {
+    let sign = |key: usize| angles.degrees[key][channel] < 0.0;
+    (until..angles.degrees.len()).all(|key| sign(key) != sign(0))
+}
+
 /// All steps over half a turn between keys on the kept branch, in order.
-pub(super) fn angle_steps(scan: &Scan<'_>, angles: &FileAngles, branches: &Branches) -> Vec<AngleStep> {
+fn angle_steps(scan: &Scan<'_>, angles: &FileAngles, branches: &Branches) -> Vec<AngleStep> {
     let lows: [f64; 3] = std::array::from_fn(|channel| usual_low(angles, channel));
     let mut steps = Vec::new();
     let mut before: Option<(usize, [i32; 3])> = None;
@@ -87,6 +163,9 @@ fn is_wrap(scan: &Scan<'_>, angles: &FileAngles, key: usize, channel: usize) -> 
     let Some(turn) = turn_into(scan, key) else { return false };
     if short(own).abs() > WRAP_REST_DEG || goes_on(key - 1) || goes_on(key + 1) {
         return false;
+    }
+    if short(own).abs() <= NEAR_WHOLE_DEG && turn < JUMP_DEG {
+        return true;
     }
     turn < HARDLY_DEG || turn < USUAL_STEPS * usual_step(scan, key)
 }

@@ -1,10 +1,16 @@
 //! Which of its equal triples each key of a file's angles stores, against the row of triples that changes least.
 
 use crate::clip::FileAngles;
+use crate::rotor::Rotor;
+
+use super::scan::Scan;
 
 /// What one step into another of the equal triples costs, in squared degrees: a change of branch must gain more than
 /// rounding and noise near a pole can.
 const SWITCH_COST: f64 = 225.0;
+
+/// Through a step in which the joint itself turns by more than this, in radians, no branch can be followed.
+const FOLLOWED_RAD: f64 = 1.0;
 
 /// The row of equal triples that changes least.
 #[derive(Clone, Debug)]
@@ -19,27 +25,32 @@ pub(super) struct Branches {
 /// whole turns are free. Not greedy: the choice at a pole is made by what follows too (methods after Viterbi 1967).
 /// The first key keeps its own branch, unless the triples that keep theirs lie outside the usual range of the middle
 /// angle and the others inside.
-pub(super) fn follow(angles: &FileAngles) -> Branches {
+pub(super) fn follow(scan: &Scan<'_>, angles: &FileAngles) -> Branches {
     let count = angles.degrees.len();
     let has_mirror = angles.axes.len() == 3;
     let mut costs = [0.0, if has_mirror { 0.0 } else { f64::INFINITY }];
     // For each key and branch, whether the best way into it comes from the other branch.
     let mut from_other: Vec<[bool; 2]> = Vec::with_capacity(count);
     let mut before: Option<[[f64; 3]; 2]> = None;
-    for triple in angles.degrees.iter() {
+    let mut pose = None;
+    for (key, triple) in angles.degrees.iter().enumerate() {
         if !triple.iter().all(|angle| angle.is_finite()) {
             from_other.push([false; 2]);
             continue;
         }
         let own = [*triple, mirrored(angles, *triple)];
         let Some(near) = before.replace(own) else {
+            pose = scan.unit(key);
             from_other.push([false; 2]);
             continue;
         };
         let change = |a: usize, b: usize| (0..3).map(|i| short(own[b][i] - near[a][i]).powi(2)).sum::<f64>();
         // Both triples mirrored change by the same, so two of the four sums serve.
+        let near_pose = std::mem::replace(&mut pose, scan.unit(key));
+        let turn = near_pose.zip(pose).map_or(0.0, |(a, b): (Rotor, Rotor)| a.turn_to(b));
+        let can_switch = has_mirror && turn <= FOLLOWED_RAD;
         let (stay, switch) =
-            (change(0, 0), if has_mirror { change(1, 0) + SWITCH_COST } else { f64::INFINITY });
+            (change(0, 0), if can_switch { change(1, 0) + SWITCH_COST } else { f64::INFINITY });
         let mut taken = [false; 2];
         let mut next = [0.0; 2];
         for branch in 0..2 {

@@ -2,7 +2,7 @@
 
 use crate::clip::Clip;
 
-use super::{Snag, SnagKind, broken_value, long_way, mirrored_angles, sign_flip, wrap};
+use super::{Snag, SnagKind, broken_value, half_turn, long_way, mirrored_angles, sign_flip, spike, wrap};
 
 /// Finds the snags of one kind in one joint of `clip` as it is, in the order of their keys.
 ///
@@ -15,7 +15,8 @@ pub fn find(clip: &Clip, joint: usize, kind: SnagKind) -> Vec<Snag> {
         SnagKind::Wrap => wrap::find(clip, joint),
         SnagKind::MirroredAngles => mirrored_angles::find(clip, joint),
         SnagKind::LongWay => long_way::find(clip, joint),
-        SnagKind::HalfTurn | SnagKind::Spike => Vec::new(),
+        SnagKind::HalfTurn => half_turn::find(clip, joint),
+        SnagKind::Spike => spike::find(clip, joint),
     };
     snags.sort_by_key(|snag| (snag.first_key, snag.last_key));
     snags

@@ -5,8 +5,7 @@ use std::f64::consts::TAU;
 use crate::clip::{Clip, FileAngles, PathKind, Stored};
 use crate::rotor::Bivector;
 
-use super::angle_steps::angle_steps;
-use super::branches::follow;
+use super::angle_steps::sorted_steps;
 use super::plane_turns::plane_runs;
 use super::scan::{Finding, Scan};
 use super::{Remedy, Snag, SnagKind};
@@ -54,8 +53,8 @@ fn cubic(scan: &Scan<'_>, key: usize) -> Option<Snag> {
 
 fn of_angles(scan: &Scan<'_>, angles: &FileAngles) -> Vec<Snag> {
     let mut snags: Vec<Snag> = Vec::new();
-    for step in angle_steps(scan, angles, &follow(angles)) {
-        if step.is_wrap || snags.last().is_some_and(|snag| snag.last_key == step.key) {
+    for step in sorted_steps(scan, angles).moves {
+        if snags.last().is_some_and(|snag| snag.last_key == step.key) {
             continue;
         }
         let size_deg =

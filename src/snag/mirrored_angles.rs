@@ -19,7 +19,7 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     if angles.axes.len() < 3 {
         return Vec::new();
     }
-    let branches = follow(angles);
+    let branches = follow(&scan, angles);
     let runs = runs(branches.mirrored.iter().map(|&mirrored| mirrored.then_some(())));
     let mut snags: Vec<Snag> =
         runs.into_iter().map(|(first, last, ())| mirrored(&scan, angles, first, last)).collect();

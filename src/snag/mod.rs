@@ -5,13 +5,17 @@ mod branches;
 mod broken_value;
 mod find;
 mod finding;
+mod half_turn;
 mod kind;
 mod long_way;
 mod mirrored_angles;
 mod plane_turns;
 mod progress;
+mod roughness;
 mod scan;
+mod seam;
 mod sign_flip;
+mod spike;
 mod wrap;
 
 pub use find::find;

@@ -1,6 +1,6 @@
 //! What every finder needs: one joint's keys with their frames, and a snag made of two of them.
 
-use crate::clip::{Clip, RotationTrack, Stored};
+use crate::clip::{Clip, PathKind, RotationTrack, Stored};
 use crate::rotor::Rotor;
 use crate::skeleton::JointKind;
 
@@ -55,6 +55,11 @@ impl<'a> Scan<'a> {
     /// Whether the file stores rotors, so that signs and lengths are its own.
     pub(super) fn stores_rotors(&self) -> bool {
         matches!(self.track.stored, Stored::Rotors)
+    }
+
+    /// Whether the joint moves on from `key` to the next, and does not jump there as its file says.
+    pub(super) fn moves_after(&self, key: usize) -> bool {
+        self.track.paths.of(key) != PathKind::Hold
     }
 
     /// `at frame 7`, `at frames 7 to 9`, `from frame 7 to the end`.

@@ -5,15 +5,10 @@ use std::f64::consts::TAU;
 use crate::clip::{Clip, FileAngles, Stored};
 use crate::rotor::Bivector;
 
-use super::angle_steps::{AngleStep, angle_steps};
-use super::branches::follow;
+use super::angle_steps::sorted_steps;
 use super::plane_turns::{PlaneRun, plane_runs};
 use super::scan::{Finding, Scan};
 use super::{Remedy, Snag, SnagKind};
-
-/// Up to this many keys at the start, and this share of all, a run there is taken for the wrong one: a calibration pose.
-const START_KEYS: usize = 3;
-const START_SHARE: usize = 20;
 
 /// Finds wraps of one joint.
 pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
@@ -30,65 +25,7 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
 }
 
 fn of_angles(scan: &Scan<'_>, angles: &FileAngles) -> Vec<Snag> {
-    let steps = angle_steps(scan, angles, &follow(angles));
-    let mut found: Vec<(usize, usize, [i32; 3])> = Vec::new();
-    for channel in 0..3 {
-        let own: Vec<AngleStep> =
-            steps.iter().filter(|step| step.is_wrap && step.channel == channel).copied().collect();
-        for (first, last, turns) in matched(scan, angles, channel, &own) {
-            match found.iter_mut().find(|run| (run.0, run.1) == (first, last)) {
-                Some(run) => run.2[channel] = turns,
-                None => {
-                    let mut all = [0; 3];
-                    all[channel] = turns;
-                    found.push((first, last, all));
-                }
-            }
-        }
-    }
-    found.sort_unstable();
-    found.into_iter().map(|run| unwrap(scan, angles, run)).collect()
-}
-
-/// Pairs each step of a channel with its way back: runs `(first, last, turns)` that leave the angle without steps once
-/// their turns are taken in. A step out of the usual range is paired with one back in, and a step inside it with another.
-fn matched(
-    scan: &Scan<'_>,
-    angles: &FileAngles,
-    channel: usize,
-    steps: &[AngleStep],
-) -> Vec<(usize, usize, i32)> {
-    let count = scan.track.keys.len();
-    let mut runs = Vec::new();
-    let mut open: [Vec<AngleStep>; 2] = [Vec::new(), Vec::new()];
-    for &step in steps {
-        let lane = &mut open[usize::from(step.leaves != 0)];
-        match lane.last() {
-            Some(way_in) if way_in.turns == -step.turns => {
-                runs.push((way_in.key, step.key - 1, way_in.turns));
-                lane.pop();
-            }
-            _ => lane.push(step),
-        }
-    }
-    for step in open.into_iter().flatten() {
-        // What lies outside the usual range is the fault; else the start is right, but for a pose or two.
-        let few = step.key <= START_KEYS && step.key * START_SHARE <= count;
-        let from_start =
-            step.leaves < 0 || (step.leaves == 0 && few && starts_apart(angles, channel, step.key));
-        runs.push(if from_start {
-            (0, step.key - 1, -step.turns)
-        } else {
-            (step.key, count - 1, step.turns)
-        });
-    }
-    runs
-}
-
-/// Whether the angle of the first keys has its sign alone: no later step comes back to it.
-fn starts_apart(angles: &FileAngles, channel: usize, until: usize) -> bool {
-    let sign = |key: usize| angles.degrees[key][channel] < 0.0;
-    (until..angles.degrees.len()).all(|key| sign(key) != sign(0))
+    sorted_steps(scan, angles).wraps.into_iter().map(|run| unwrap(scan, angles, run)).collect()
 }
 
 fn unwrap(scan: &Scan<'_>, angles: &FileAngles, (first, last, turns): (usize, usize, [i32; 3])) -> Snag {

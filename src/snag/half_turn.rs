@@ -1,0 +1,383 @@
+//! Runs of keys in which a joint sits about half a turn off its neighbours.
+
+use std::f64::consts::PI;
+
+use glam::DVec3;
+
+use crate::clip::{Clip, PathKind};
+use crate::rotor::{Bivector, Rotor};
+
+use super::roughness::angle_of_dot;
+use super::scan::{Finding, Scan};
+use super::seam::{Offset, Side, joined, offset_at, offset_in_few};
+use super::{Remedy, Snag, SnagKind};
+
+/// With fewer keys nothing can be said about what is usual.
+const LEAST_KEYS: usize = 8;
+
+/// A step from key to key of at least this is looked at.
+const STEP_RAD: f64 = 100.0 / 180.0 * PI;
+
+/// A smaller one is, when a joint above or below makes a step of [`STEP_RAD`] at the same time.
+const LINKED_STEP_RAD: f64 = 60.0 / 180.0 * PI;
+
+/// What is half a turn beyond doubt.
+const FULL_RAD: f64 = 150.0 / 180.0 * PI;
+
+/// What has a way in or out alone must be this near to half a turn.
+const LONE_RAD: f64 = 170.0 / 180.0 * PI;
+
+/// A step must be this many times the usual step near by, and the steps next to it.
+const TIMES_USUAL: f64 = 4.0;
+const TIMES_NEXT: f64 = 2.5;
+
+/// Keys to both sides that tell the usual step.
+const NEAR_KEYS: usize = 12;
+
+/// Ways in and out that differ by more do not belong together.
+const APART_RAD: f64 = 80.0 / 180.0 * PI;
+
+/// Ways in and out that agree this well leave no doubt.
+const AGREE_RAD: f64 = 20.0 / 180.0 * PI;
+
+/// Runs of so few keys are told as half-turns only when the offset is half a turn beyond doubt; else they are spikes.
+const FEW: usize = 4;
+
+/// A run at the start of so few keys is a calibration pose.
+const CALIBRATION_KEYS: usize = 2;
+
+/// An offset is taken for exactly half a turn, or for one about the limb, within so many of its standard deviations, and
+/// never beyond this.
+const SNAP_SIGMAS: f64 = 3.0;
+const SNAP_RAD: f64 = 3.0 / 180.0 * PI;
+
+/// Finds half-turns of one joint.
+pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
+    let Some(scan) = Scan::new(clip, joint).filter(|scan| scan.track.keys.len() >= LEAST_KEYS) else {
+        return Vec::new();
+    };
+    let jumps = jumps(&scan);
+    if jumps.is_empty() {
+        return Vec::new();
+    }
+    let poses = poses(&scan);
+    let secs: Vec<f64> = scan.track.times.iter().collect();
+    let above = runs_above(&scan, &jumps);
+    let motion = Motion { scan, poses, secs, jumps, above };
+    motion.runs().into_iter().filter_map(|run| motion.snag(run)).collect()
+}
+
+/// The runs of the nearest joint above that jumps at the same times as this one, as keys of this joint; a joint that turns
+/// along with another is off when that one is.
+fn runs_above(scan: &Scan<'_>, own: &[usize]) -> Vec<Run> {
+    let skeleton = &scan.clip.skeleton;
+    let above =
+        std::iter::successors(skeleton.parent_joint(scan.joint), |&up| skeleton.parent_joint(up)).take(2);
+    for other in above.filter_map(|joint| Scan::new(scan.clip, joint)) {
+        if other.track.times != scan.track.times {
+            continue;
+        }
+        let jumps = jumps(&other);
+        let shared = own.iter().filter(|jump| jumps.binary_search(jump).is_ok()).count();
+        if shared * 2 > own.len() {
+            let poses = poses(&other);
+            let secs = other.track.times.iter().collect();
+            return Motion { scan: other, poses, secs, jumps, above: Vec::new() }.runs();
+        }
+    }
+    Vec::new()
+}
+
+/// Unit poses of all keys; where the file has none, the one before.
+fn poses(scan: &Scan<'_>) -> Vec<Rotor> {
+    let mut before = scan.track.sound_key(0);
+    (0..scan.track.keys.len())
+        .map(|key| {
+            before = scan.unit(key).unwrap_or(before).aligned_to(before);
+            before
+        })
+        .collect()
+}
+
+fn step(scan: &Scan<'_>, key: usize) -> f64 {
+    match (key.checked_sub(1).and_then(|before| scan.unit(before)), scan.unit(key)) {
+        (Some(a), Some(b)) => angle_of_dot(a.dot(b)),
+        _ => 0.0,
+    }
+}
+
+/// Keys into which the joint jumps.
+fn jumps(scan: &Scan<'_>) -> Vec<usize> {
+    let count = scan.track.keys.len();
+    let wide: Vec<usize> = (1..count)
+        .filter(|&key| {
+            // Unit or not, a small dot product is a wide step; the exact angle comes after.
+            let (a, b) = (scan.track.keys[key - 1], scan.track.keys[key]);
+            a.dot(b).abs() < 0.9
+                && step(scan, key) >= LINKED_STEP_RAD
+                && scan.track.paths.of(key - 1) != PathKind::Hold
+        })
+        .collect();
+    wide.iter()
+        .copied()
+        .filter(|&key| {
+            let own = step(scan, key);
+            is_sudden(scan, &wide, key, own) && (own >= STEP_RAD || is_linked(scan, key))
+        })
+        .collect()
+}
+
+/// Whether the step is far above what is usual near by.
+fn is_sudden(scan: &Scan<'_>, wide: &[usize], key: usize, own: f64) -> bool {
+    let count = scan.track.keys.len();
+    let is_jump = |key: usize| wide.binary_search(&key).is_ok();
+    let mut near: Vec<f64> = (key.saturating_sub(NEAR_KEYS).max(1)..(key + NEAR_KEYS + 1).min(count))
+        .filter(|&other| other != key)
+        .map(|other| step(scan, other))
+        .collect();
+    near.sort_by(f64::total_cmp);
+    let usual = near.get(near.len() / 2).copied().unwrap_or(0.0);
+    // Steps next to it count unless they too may be jumps: a flip of a key or two has its way in and out side by side.
+    let next = [key.saturating_sub(2), key - 1, key + 1, key + 2]
+        .into_iter()
+        .filter(|&other| (1..count).contains(&other) && !(is_jump(other) && step(scan, other) >= 0.75 * own))
+        .map(|other| step(scan, other))
+        .fold(0.0, f64::max);
+    own >= TIMES_USUAL * usual && own >= TIMES_NEXT * next
+}
+
+/// Whether a joint up to two above or below makes a jump at the same time.
+fn is_linked(scan: &Scan<'_>, key: usize) -> bool {
+    let skeleton = &scan.clip.skeleton;
+    let above =
+        std::iter::successors(skeleton.parent_joint(scan.joint), |&up| skeleton.parent_joint(up)).take(2);
+    let below = skeleton.children(scan.joint).iter().copied();
+    let below = below.clone().chain(below.flat_map(|child| skeleton.children(child).iter().copied()));
+    above.chain(below).any(|other| {
+        Scan::new(scan.clip, other).is_some_and(|other| {
+            let near = other.track.times.nearest(scan.secs(key));
+            near > 0 && step(&other, near) >= STEP_RAD
+        })
+    })
+}
+
+/// How many joints of all make a wide step at this time: a cut moves them all.
+fn is_cut(scan: &Scan<'_>, key: usize) -> bool {
+    let (mut listed, mut wide) = (0, 0);
+    for other in scan.clip.skeleton.listed().filter_map(|joint| Scan::new(scan.clip, joint)) {
+        let near = other.track.times.nearest(scan.secs(key));
+        listed += 1;
+        wide += usize::from(near > 0 && step(&other, near) >= LINKED_STEP_RAD / 2.0);
+    }
+    wide >= 4 && wide * 3 >= listed
+}
+
+/// A joint with jumps.
+struct Motion<'a> {
+    scan: Scan<'a>,
+    poses: Vec<Rotor>,
+    secs: Vec<f64>,
+    jumps: Vec<usize>,
+    /// Runs of a joint above that jumps along.
+    above: Vec<Run>,
+}
+
+/// A run of keys that are off: `first..=last`.
+#[derive(Clone, Copy, Debug, PartialEq)]
+struct Run {
+    first: usize,
+    last: usize,
+}
+
+impl Motion<'_> {
+    /// Which keys are off: each jump is a way in or out. Of the ways to pair them the one is taken whose ways in and out
+    /// agree and that leaves the fewest keys off.
+    fn runs(&self) -> Vec<Run> {
+        let (jumps, count) = (&self.jumps, self.poses.len());
+        let key = |jump: usize| if jump < jumps.len() { jumps[jump] } else { count };
+        // `best[i]`: cheapest pairing of the jumps from `i` on, and how many jumps it takes first.
+        let mut best: Vec<(f64, usize)> = vec![(0.0, 0); jumps.len() + 1];
+        for jump in (0..jumps.len()).rev() {
+            // Left alone: a jump that is no half-turn.
+            let mut own = (best[jump + 1].0 + 1.2, 1);
+            if jump + 1 < jumps.len() {
+                let run = Run { first: key(jump), last: key(jump + 1) - 1 };
+                let cost = best[jump + 2].0 + self.cost(run);
+                if cost < own.0 {
+                    own = (cost, 2);
+                }
+            } else {
+                let run = Run { first: key(jump), last: count - 1 };
+                let cost = self.cost(run);
+                if cost < own.0 {
+                    own = (cost, 2);
+                }
+            }
+            best[jump] = own;
+        }
+        let walk = |mut jump: usize, runs: &mut Vec<Run>| {
+            while jump < jumps.len() {
+                if best[jump].1 == 2 {
+                    runs.push(Run { first: key(jump), last: key(jump + 1) - 1 });
+                }
+                jump += best[jump].1;
+            }
+        };
+        let mut runs = Vec::new();
+        let from_start = Run { first: 0, last: key(0) - 1 };
+        // The first pose is believed where both ways are nearly as good.
+        if key(0) > CALIBRATION_KEYS && self.cost(from_start) * 1.2 + best[1].0 < best[0].0 {
+            runs.push(from_start);
+            walk(1, &mut runs);
+        } else {
+            walk(0, &mut runs);
+        }
+        runs
+    }
+
+    /// 0 for a short run that is entered and left by the same offset; above 1 for what is better left alone.
+    fn cost(&self, run: Run) -> f64 {
+        let share = (run.last + 1 - run.first) as f64 / self.poses.len() as f64;
+        match self.ends(run, Side::Bone) {
+            [Some(a), Some(b)] => {
+                let parent = match self.ends(run, Side::Parent) {
+                    [Some(a), Some(b)] => a.turn.turn_to(b.turn),
+                    _ => PI,
+                };
+                let apart = a.turn.turn_to(b.turn).min(parent) / APART_RAD;
+                if self.above.is_empty() {
+                    share + apart
+                } else if self.above.contains(&run) {
+                    0.3 * apart
+                } else {
+                    1.0 + share + apart
+                }
+            }
+            // Half the price of two jumps left alone: one end proves less.
+            [Some(one), None] | [None, Some(one)] => {
+                let seam = if run.first > 0 { run.first } else { run.last + 1 };
+                let is_full = one.turn.turn() >= LONE_RAD && !is_cut(&self.scan, seam);
+                if is_full { 0.2 + share } else { 10.0 }
+            }
+            [None, None] => 10.0,
+        }
+    }
+
+    /// The offset at both ends of a run, where it has them.
+    fn ends(&self, run: Run, side: Side) -> [Option<Offset>; 2] {
+        let count = self.poses.len();
+        let (before, after) = (self.sound_from(run.first), self.sound_to(run.last));
+        if run.first > 0 && run.last + 1 < count && run.last - run.first < FEW {
+            // Too few to have rates of their own: against the way across.
+            return [run.first, run.last]
+                .map(|key| Some(offset_in_few(&self.poses, &self.secs, (run.first, run.last), key, side)));
+        }
+        let entering =
+            (run.first > 0).then(|| offset_at(&self.poses, run.first, (before, run.last), side, false));
+        let leaving = (run.last + 1 < count)
+            .then(|| offset_at(&self.poses, run.last + 1, (run.first, after), side, true));
+        [entering, leaving]
+    }
+
+    /// First key from which the motion runs to `key` without a jump.
+    fn sound_from(&self, key: usize) -> usize {
+        self.jumps.iter().rev().find(|&&jump| jump < key).copied().unwrap_or(0)
+    }
+
+    /// Last key to which the motion runs from `key + 1` without a jump.
+    fn sound_to(&self, key: usize) -> usize {
+        self.jumps.iter().find(|&&jump| jump > key + 1).map_or(self.poses.len() - 1, |jump| jump - 1)
+    }
+
+    fn snag(&self, run: Run) -> Option<Snag> {
+        let both = [Side::Bone, Side::Parent].map(|side| (side, self.ends(run, side)));
+        let apart = |ends: &[Option<Offset>; 2]| match ends {
+            [Some(a), Some(b)] => a.turn.turn_to(b.turn),
+            _ => 0.0,
+        };
+        // On the bone side unless the other fits clearly better.
+        let (side, ends) = if apart(&both[1].1) + 0.01 < 0.7 * apart(&both[0].1) { both[1] } else { both[0] };
+        let offset = match ends {
+            [Some(a), Some(b)] => joined(a, b),
+            [Some(one), None] | [None, Some(one)] => one,
+            [None, None] => return None,
+        };
+        let apart = apart(&ends);
+        let turn_rad = offset.turn.turn();
+        let is_few = run.last - run.first < FEW;
+        if is_few && turn_rad < FULL_RAD {
+            return None;
+        }
+        let offset = self.snapped(offset, side);
+        let is_sure = turn_rad >= FULL_RAD && apart <= AGREE_RAD && ends.iter().all(Option::is_some);
+        let back = offset.reverse();
+        let scan = &self.scan;
+        let text = self.text(run);
+        Some(scan.snag(Finding {
+            kind: SnagKind::HalfTurn,
+            keys: (run.first, run.last),
+            size_rad: turn_rad,
+            confidence: if is_sure { 0.95 } else { 0.6 },
+            remedy: if side == Side::Bone { Remedy::TakeOut(back) } else { Remedy::TakeOutAbove(back) },
+            safe: is_sure,
+            text,
+        }))
+    }
+
+    fn text(&self, run: Run) -> String {
+        let (scan, count) = (&self.scan, self.poses.len());
+        let name = scan.label();
+        let degrees = |key: usize| step(scan, key).to_degrees().round();
+        match (run.first > 0, run.last + 1 < count) {
+            (true, true) => format!(
+                "{name} flips {}° at frame {} and back at {}",
+                degrees(run.first),
+                scan.frame(run.first),
+                scan.frame(run.last + 1)
+            ),
+            (true, false) => format!(
+                "{name} flips {}° at frame {} and stays so",
+                degrees(run.first),
+                scan.frame(run.first)
+            ),
+            _ => format!(
+                "{name} starts flipped, and flips back by {}° at frame {}",
+                degrees(run.last + 1),
+                scan.frame(run.last + 1)
+            ),
+        }
+    }
+
+    /// The offset made exact where it is half a turn, or one about the limb, as far as can be told.
+    fn snapped(&self, offset: Offset, side: Side) -> Rotor {
+        let within = (SNAP_SIGMAS * offset.sigma_rad).min(SNAP_RAD);
+        if PI - offset.turn.turn() > within {
+            return offset.turn;
+        }
+        let axis = offset.turn.bivector().normalize_or_zero().axis();
+        let near = self.axes(side).into_iter().find(|own| {
+            // Half a turn about an axis that is off by α is off by 2α.
+            2.0 * own.dot(axis).abs().min(1.0).acos() <= within
+        });
+        let axis = near.unwrap_or(axis);
+        Rotor::from_parts(0.0, Bivector::from_axis(axis) * -1.0)
+    }
+
+    /// Directions a half-turn is likely about: along the limbs that hang on the joint, and its own axes.
+    fn axes(&self, side: Side) -> Vec<DVec3> {
+        let skeleton = &self.scan.clip.skeleton;
+        let own = &skeleton.joints()[self.scan.joint];
+        let mut axes: Vec<DVec3> = match side {
+            Side::Bone => {
+                let children = skeleton.children(self.scan.joint).iter();
+                children
+                    .map(|&child| skeleton.joints()[child].rest.translation)
+                    .chain(own.tips.iter().copied())
+                    .collect()
+            }
+            Side::Parent => vec![own.rest.translation],
+        };
+        axes.extend([DVec3::X, DVec3::Y, DVec3::Z]);
+        axes.into_iter().filter_map(DVec3::try_normalize).collect()
+    }
+}

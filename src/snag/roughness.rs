@@ -1,0 +1,134 @@
+//! How far each key lies off the way between its neighbours, and what is usual for that near by.
+
+use crate::rotor::Rotor;
+
+use super::scan::Scan;
+
+/// Keys to both sides that tell what is usual: this long, within these counts.
+const WINDOW_SECS: f64 = 0.2;
+const WINDOW_KEYS: (usize, usize) = (7, 30);
+
+/// The standard deviation of normal noise is this many times its median absolute deviation: 1/Φ⁻¹(3/4).
+const SIGMA_PER_MAD: f64 = 1.4826;
+
+/// A joint's sound poses and their roughness.
+#[derive(Debug)]
+pub(super) struct Roughness {
+    /// Unit poses; where the file has none, the one before.
+    pub(super) poses: Vec<Rotor>,
+    /// Key times in seconds.
+    pub(super) secs: Vec<f64>,
+    /// The angle in radians between each key and the way from its neighbour before to the one after; 0 at the ends.
+    pub(super) residual: Vec<f64>,
+    usual: Vec<Usual>,
+    block: usize,
+}
+
+/// What is usual near a key, in radians.
+#[derive(Clone, Copy, Debug, Default)]
+pub(super) struct Usual {
+    /// Median residual.
+    pub(super) median: f64,
+    /// Its robust spread.
+    pub(super) spread: f64,
+    /// The 90th percentile.
+    pub(super) high: f64,
+    /// Median step from key to key.
+    pub(super) step: f64,
+}
+
+impl Roughness {
+    /// `None` with fewer than `least` keys.
+    pub(super) fn new(scan: &Scan<'_>, least: usize) -> Option<Self> {
+        let count = scan.track.keys.len();
+        if count < least {
+            return None;
+        }
+        let mut poses = Vec::with_capacity(count);
+        let mut before = scan.track.sound_key(0);
+        for key in 0..count {
+            let own = scan.unit(key).unwrap_or(before).aligned_to(before);
+            poses.push(own);
+            before = own;
+        }
+        let secs: Vec<f64> = scan.track.times.iter().collect();
+        let residual: Vec<f64> = (0..count)
+            .map(|key| {
+                if key == 0 || key + 1 == count {
+                    0.0
+                } else {
+                    residual(&poses, &secs, key, key - 1, key + 1)
+                }
+            })
+            .collect();
+        let step_secs = scan.track.times.median_step().unwrap_or(1.0);
+        let reach = ((WINDOW_SECS / step_secs) as usize).clamp(WINDOW_KEYS.0, WINDOW_KEYS.1);
+        let block = (reach / 2).max(1);
+        let usual = (0..count)
+            .step_by(block)
+            .map(|start| {
+                let middle = start + block / 2;
+                usual(&poses, &residual, middle.saturating_sub(reach), (middle + reach + 1).min(count))
+            })
+            .collect();
+        Some(Self { poses, secs, residual, usual, block })
+    }
+
+    pub(super) fn len(&self) -> usize {
+        self.poses.len()
+    }
+
+    /// What is usual around a key.
+    pub(super) fn usual(&self, key: usize) -> Usual {
+        self.usual[key / self.block]
+    }
+}
+
+/// The angle in radians between a key and the way from `before` to `after`.
+///
+/// The way is taken on the chord: for steps under 60° it is within 0.1° of slerp, at a fraction of the cost.
+pub(super) fn residual(poses: &[Rotor], secs: &[f64], key: usize, before: usize, after: usize) -> f64 {
+    let span = secs[after] - secs[before];
+    let share = if span > 0.0 { (secs[key] - secs[before]) / span } else { 0.5 };
+    angle_to_way(poses[before], poses[after], share, poses[key])
+}
+
+/// The angle in radians between a pose and the way from `a` to `b`.
+pub(super) fn angle_to_way(a: Rotor, b: Rotor, share: f64, own: Rotor) -> f64 {
+    let b = b.aligned_to(a).scale(share);
+    let a = a.scale(1.0 - share);
+    let way = Rotor::new(a.s + b.s, a.yz + b.yz, a.zx + b.zx, a.xy + b.xy);
+    let length = way.norm();
+    if length < 1e-9 {
+        return std::f64::consts::PI;
+    }
+    let dot = way.dot(own) / length;
+    angle_of_dot(dot)
+}
+
+/// The turn in radians between unit rotors of this dot product; exact near 0 to about 1e-8.
+pub(super) fn angle_of_dot(dot: f64) -> f64 {
+    2.0 * dot.abs().min(1.0).acos()
+}
+
+fn usual(poses: &[Rotor], residual: &[f64], from: usize, to: usize) -> Usual {
+    // The ends have no residual of their own.
+    let mut own: Vec<f64> = residual[from.max(1)..to.min(residual.len() - 1).max(from.max(1))].to_vec();
+    if own.is_empty() {
+        return Usual::default();
+    }
+    let median = take(&mut own, 0.5);
+    let high = take(&mut own, 0.9);
+    own.iter_mut().for_each(|value| *value = (*value - median).abs());
+    let spread = SIGMA_PER_MAD * take(&mut own, 0.5);
+    let mut steps: Vec<f64> =
+        (from.max(1)..to).map(|key| angle_of_dot(poses[key - 1].dot(poses[key]))).collect();
+    let step = if steps.is_empty() { 0.0 } else { take(&mut steps, 0.5) };
+    Usual { median, spread, high, step }
+}
+
+/// The value at a share of the sorted list.
+fn take(values: &mut [f64], share: f64) -> f64 {
+    let index = ((values.len() - 1) as f64 * share).round() as usize;
+    *values.select_nth_unstable_by(index, f64::total_cmp).1
+}

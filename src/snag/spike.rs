@@ -1,0 +1,234 @@
+//! One to a few keys that lie far off the motion around them.
+
+use std::f64::consts::PI;
+
+use crate::clip::Clip;
+use crate::rotor::{Rotor, slerp};
+
+use super::roughness::{Roughness, angle_to_way};
+use super::scan::{Finding, Scan};
+use super::{Remedy, Snag, SnagKind};
+
+/// With fewer keys nothing can be said about what is usual.
+const LEAST_KEYS: usize = 8;
+
+/// Longest run told as a spike.
+const LONGEST: usize = 4;
+
+/// Roughness below this is not looked at.
+const LEAST_RAD: f64 = 3.5 / 180.0 * PI;
+
+/// The least spread that roughness is measured in.
+const LEAST_SPREAD_RAD: f64 = 0.2 / 180.0 * PI;
+
+/// The roughness of a spike is at least so many spreads above the usual.
+const LEAST_SCORE: f64 = 5.0;
+
+/// What a joint can do by itself, in radians per second squared: beyond it even a single key far off is told.
+const FASTEST: f64 = 25_000.0 / 180.0 * PI;
+
+/// How many times rougher the motion is with the run than without: a spike takes its roughness with it, while a fast move
+/// that is sampled coarsely stays rough whichever key is taken out. First for what a joint could do, then for the rest.
+const LEAST_GAIN_SLOW: f64 = 8.0;
+const LEAST_GAIN: f64 = 4.0;
+
+/// Enough where the move is far beyond what any joint can do. A single step, which is a jump and no spike, gains 2.
+const LEAST_GAIN_IMPOSSIBLE: f64 = 3.0;
+
+/// Score times gain: either may be small where the other is large.
+const LEAST_PRODUCT: f64 = 75.0;
+
+/// A run that ends further from where it began, in its own sizes, is a step and no spike.
+const STEP_SIZES: f64 = 2.5;
+
+/// Sound keys between two spikes that are looked at together.
+const NEXT_KEYS: usize = 3;
+
+/// The keys after a calibration pose at the start are no spike.
+const START_KEYS: usize = 2;
+
+/// A run of keys that may be a spike.
+#[derive(Clone, Copy, Debug)]
+struct Run {
+    first: usize,
+    last: usize,
+    /// Distance of the run's keys from the way across, their median, in radians.
+    size: f64,
+    /// Largest roughness near by with the run, in radians.
+    peak: f64,
+    /// Largest roughness that stays near by when the run is drawn anew.
+    rest: f64,
+    /// The turn across the run.
+    across: f64,
+}
+
+/// Finds spikes of one joint.
+pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
+    let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
+    let Some(rough) = Roughness::new(&scan, LEAST_KEYS) else { return Vec::new() };
+    let mut snags = Vec::new();
+    let mut key = 1;
+    while key + 1 < rough.len() {
+        let threshold = threshold(&rough, key);
+        if rough.residual[key] < threshold {
+            key += 1;
+            continue;
+        }
+        let end = stretch(&rough, key, threshold);
+        if let Some(run) = best_run(&rough, key, end)
+            && let Some(confidence) =
+                judge(&scan, &rough, run, LEAST_PRODUCT).or_else(|| beside_another(&scan, &rough, run))
+        {
+            snags.push(spike(&scan, run, confidence));
+            key = end.max(run.last) + 1;
+        } else {
+            key += 1;
+        }
+    }
+    snags
+}
+
+/// From this roughness on a key may belong to a spike: at the ends of a longer run only half of it shows.
+fn threshold(rough: &Roughness, key: usize) -> f64 {
+    let usual = rough.usual(key);
+    (usual.median + LEAST_SCORE * usual.spread).max(LEAST_RAD) / 2.5
+}
+
+/// The last of the rough keys from `start` on, with no more than a calm one between.
+fn stretch(rough: &Roughness, start: usize, threshold: f64) -> usize {
+    let mut end = start;
+    for key in start + 1..(start + LONGEST + 4).min(rough.len() - 1) {
+        if rough.residual[key] >= threshold {
+            end = key;
+        } else if key > end + 2 {
+            break;
+        }
+    }
+    end
+}
+
+/// The run in a stretch of rough keys that takes most of the roughness with it.
+fn best_run(rough: &Roughness, start: usize, end: usize) -> Option<Run> {
+    let mut best: Option<(f64, Run)> = None;
+    for length in 1..=LONGEST {
+        for first in start..=end {
+            let last = first + length - 1;
+            if last > end || last + 1 >= rough.len() {
+                continue;
+            }
+            let run = weigh(rough, first, last);
+            // A longer run takes more with it by itself, so it must take clearly more.
+            let cost = run.rest * (1.0 + 0.15 * length as f64);
+            if best.is_none_or(|(least, _)| cost < least) {
+                best = Some((cost, run));
+            }
+        }
+    }
+    best.map(|(_, run)| run)
+}
+
+/// How rough the motion stays around `first..=last` when those keys are drawn anew, and those of `also` with them.
+fn rest(rough: &Roughness, (first, last): (usize, usize), also: Option<(usize, usize)>) -> f64 {
+    let runs = [Some((first, last)), also];
+    let way = |key: usize| {
+        let inside = |&(first, last): &(usize, usize)| (first..=last).contains(&key);
+        match runs.iter().flatten().find(|run| inside(run)) {
+            None => rough.poses[key],
+            Some((first, last)) => across(rough, *first, *last, key),
+        }
+    };
+    (first.saturating_sub(2).max(1)..=(last + 2).min(rough.len() - 2))
+        .map(|key| {
+            let share = (rough.secs[key] - rough.secs[key - 1]) / (rough.secs[key + 1] - rough.secs[key - 1]);
+            angle_to_way(way(key - 1), way(key + 1), share, way(key))
+        })
+        .fold(0.0, f64::max)
+}
+
+/// A key of `first..=last` on the way across them.
+fn across(rough: &Roughness, first: usize, last: usize, key: usize) -> Rotor {
+    let (a, b) = (first - 1, last + 1);
+    let share = (rough.secs[key] - rough.secs[a]) / (rough.secs[b] - rough.secs[a]);
+    slerp(rough.poses[a], rough.poses[b], share)
+}
+
+fn weigh(rough: &Roughness, first: usize, last: usize) -> Run {
+    let mut off: Vec<f64> =
+        (first..=last).map(|key| across(rough, first, last, key).turn_to(rough.poses[key])).collect();
+    off.sort_by(f64::total_cmp);
+    let near = first.saturating_sub(2).max(1)..=(last + 2).min(rough.len() - 2);
+    Run {
+        first,
+        last,
+        size: off[off.len() / 2],
+        peak: near.map(|key| rough.residual[key]).fold(0.0, f64::max),
+        rest: rest(rough, (first, last), None),
+        across: rough.poses[first - 1].turn_to(rough.poses[last + 1]),
+    }
+}
+
+/// How sure it is that `run` is a spike with another close by: of two neither takes the other's roughness with it, so
+/// both are drawn anew to see what stays rough.
+fn beside_another(scan: &Scan<'_>, rough: &Roughness, run: Run) -> Option<f64> {
+    if run.last > run.first + 1 {
+        return None;
+    }
+    let mut least = run.rest;
+    for length in 1..=2 {
+        for gap in 1..=NEXT_KEYS {
+            let after = run.last + 1 + gap;
+            let before = run.first.checked_sub(gap + length).filter(|&first| first > 0);
+            for first in [Some(after), before].into_iter().flatten() {
+                let last = first + length - 1;
+                if last + 1 < rough.len() {
+                    least = least.min(rest(rough, (run.first, run.last), Some((first, last))));
+                }
+            }
+        }
+    }
+    judge(scan, rough, Run { rest: least, ..run }, 2.0 * LEAST_PRODUCT)
+}
+
+/// Whether a run is a spike, and how sure that is, 0.5 to 1.
+fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Option<f64> {
+    if run.first <= START_KEYS || (run.first - 1..=run.last).any(|key| !scan.moves_after(key)) {
+        return None;
+    }
+    let usual = rough.usual(run.first);
+    let score = (run.peak - usual.median) / usual.spread.max(LEAST_SPREAD_RAD);
+    let gain = run.peak / run.rest.max(LEAST_SPREAD_RAD);
+    // The acceleration that the roughness stands for, twice the distance in half the span's square.
+    let half_secs =
+        (rough.secs[run.last + 1] - rough.secs[run.first - 1]) / (run.last + 2 - run.first) as f64;
+    let least_gain = match 2.0 * run.peak / (FASTEST * half_secs * half_secs) {
+        times if times > 20.0 => LEAST_GAIN_IMPOSSIBLE,
+        times if times > 1.0 => LEAST_GAIN,
+        _ => LEAST_GAIN_SLOW,
+    };
+    let is_spike = run.peak >= LEAST_RAD
+        && score >= LEAST_SCORE
+        && gain >= least_gain
+        && score * gain >= least_product
+        && run.across <= STEP_SIZES * run.size;
+    is_spike.then(|| 1.0 - 0.5 * (LEAST_PRODUCT / (score * gain)).sqrt())
+}
+
+/// From this confidence on a spike may be mended unasked.
+const SAFE_CONFIDENCE: f64 = 0.6;
+
+fn spike(scan: &Scan<'_>, run: Run, confidence: f64) -> Snag {
+    scan.snag(Finding {
+        kind: SnagKind::Spike,
+        keys: (run.first, run.last),
+        size_rad: run.size,
+        confidence,
+        remedy: Remedy::Redraw,
+        safe: confidence >= SAFE_CONFIDENCE,
+        text: format!(
+            "{} lies {:.0}° off the motion around {}",
+            scan.label(),
+            run.size.to_degrees(),
+            scan.span(run.first, run.last)
+        ),
+    })
+}

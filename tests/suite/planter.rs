@@ -1,0 +1,401 @@
+//! Faults of every kind, planted with known truth into sound joints of the real clips, and what is found and mended of them.
+
+use std::collections::BTreeMap;
+use std::sync::Arc;
+
+use glam::DVec3;
+use turnwright::clip::{Clip, PathKind, Paths, RotationTrack, Stored};
+use turnwright::exchange::{OpenOptions, open};
+use turnwright::mend::{self, SurveyOptions};
+use turnwright::rotor::{Bivector, Rotor, slerp};
+use turnwright::snag::{Snag, SnagKind, Unwatched};
+
+use crate::support::shared;
+
+/// Random numbers that are the same everywhere: Steele, Lea & Flood 2014, "Fast splittable pseudorandom number generators".
+pub(crate) struct Random(u64);
+
+impl Random {
+    pub(crate) fn new(seed: u64) -> Self {
+        Self(seed)
+    }
+
+    fn bits(&mut self) -> u64 {
+        self.0 = self.0.wrapping_add(0x9e37_79b9_7f4a_7c15);
+        let mut z = self.0;
+        z = (z ^ (z >> 30)).wrapping_mul(0xbf58_476d_1ce4_e5b9);
+        z = (z ^ (z >> 27)).wrapping_mul(0x94d0_49bb_1331_11eb);
+        z ^ (z >> 31)
+    }
+
+    /// From 0 up to 1.
+    fn unit(&mut self) -> f64 {
+        (self.bits() >> 11) as f64 / (1u64 << 53) as f64
+    }
+
+    fn between(&mut self, low: f64, high: f64) -> f64 {
+        low + (high - low) * self.unit()
+    }
+
+    /// A whole number from `low` to `high`, both included.
+    fn whole(&mut self, low: usize, high: usize) -> usize {
+        low + (self.bits() % (high - low + 1) as u64) as usize
+    }
+
+    fn direction(&mut self) -> DVec3 {
+        loop {
+            let v = DVec3::new(self.between(-1.0, 1.0), self.between(-1.0, 1.0), self.between(-1.0, 1.0));
+            if (0.1..1.0).contains(&v.length()) {
+                return v.normalize();
+            }
+        }
+    }
+}
+
+/// One planted fault.
+struct Planted {
+    kind: SnagKind,
+    joint: usize,
+    first: usize,
+    last: usize,
+}
+
+/// The files that faults are planted into.
+const FILES: [&str; 10] = [
+    "bvh/cmu_02_01_walk.bvh",
+    "bvh/zxy_19joints_30fps.bvh",
+    "bvh/walk01.bvh",
+    "bvh/xyz_affective_walk.bvh",
+    "bvh/mixed_order_6ch.bvh",
+    "bvh/yxz_23joints_120fps.bvh",
+    "gltf/Fox.glb",
+    "gltf/biped23_movement_clips.glb",
+    "gltf/wolf.glb",
+    "gltf/wasp.glb",
+];
+
+/// What is known of one real clip before anything is planted.
+pub(crate) struct Ground {
+    pub(crate) name: String,
+    pub(crate) clip: Arc<Clip>,
+    /// What is found in it as it is.
+    pub(crate) snags: Vec<Snag>,
+}
+
+/// All clips of a file, surveyed.
+pub(crate) fn grounds(file: &str) -> Option<Vec<Ground>> {
+    let path = shared(&format!("data/{file}"))?;
+    let source = open(&path, &OpenOptions::default()).unwrap();
+    let surveyed = source.clips.into_iter().map(|clip| {
+        let snags = survey(&clip).snags;
+        Ground { name: format!("{file}#{}", clip.name), clip, snags }
+    });
+    Some(surveyed.collect())
+}
+
+fn survey(clip: &Clip) -> mend::Survey {
+    mend::survey(clip, &SurveyOptions::default(), &Unwatched).unwrap()
+}
+
+/// The kinds that suit a track.
+fn kinds(track: &RotationTrack) -> &'static [SnagKind] {
+    match track.stored {
+        Stored::Rotors => &[
+            SnagKind::BrokenValue,
+            SnagKind::SignFlip,
+            SnagKind::LongWay,
+            SnagKind::HalfTurn,
+            SnagKind::Spike,
+        ],
+        _ => &[
+            SnagKind::BrokenValue,
+            SnagKind::Wrap,
+            SnagKind::MirroredAngles,
+            SnagKind::HalfTurn,
+            SnagKind::Spike,
+        ],
+    }
+}
+
+/// A run of `least` to `most` keys with at least `margin` sound ones on both sides.
+fn run(random: &mut Random, count: usize, least: usize, most: usize, margin: usize) -> (usize, usize) {
+    let room = count - 2 * margin;
+    let length = random.whole(least, most.min(room).max(least));
+    let first = random.whole(margin, margin + room - length);
+    (first, first + length - 1)
+}
+
+/// Keys with other poses; a file's angles are taken as an exporter would write them, each frame by itself.
+fn with_poses(track: &RotationTrack, first: usize, poses: &[Rotor]) -> RotationTrack {
+    match &track.stored {
+        Stored::Angles(angles) => {
+            let triples: Vec<(usize, [f64; 3])> = poses
+                .iter()
+                .enumerate()
+                .map(|(i, pose)| (first + i, angles.order.from_rotor(*pose, 0.0).map(f64::to_degrees)))
+                .collect();
+            track.with_angles(&triples)
+        }
+        _ => {
+            let mut keys = track.keys.to_vec();
+            for (i, pose) in poses.iter().enumerate() {
+                keys[first + i] = pose.aligned_to(keys[(first + i).saturating_sub(1)]);
+            }
+            RotationTrack { keys: keys.into(), ..track.clone() }
+        }
+    }
+}
+
+/// Half a turn about `axis`.
+fn half_turn(axis: DVec3) -> Rotor {
+    Rotor::from_plane_angles(Bivector::from_axis(axis * std::f64::consts::PI))
+}
+
+/// A track with one fault, and where it is; `None` where the kind does not suit.
+fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Option<(RotationTrack, Planted)> {
+    let track = clip.rotation(joint)?;
+    let count = track.keys.len();
+    let poses: Vec<Rotor> = (0..count).map(|key| track.sound_key(key)).collect();
+    let planted = |(first, last): (usize, usize)| Planted { kind, joint, first, last };
+    Some(match kind {
+        SnagKind::BrokenValue => {
+            let (first, last) = run(random, count, 1, 3, 2);
+            let scale = random.between(0.55, 1.8);
+            let unusable = random.unit() < 0.5;
+            let off = |rotor: Rotor| {
+                if unusable { Rotor::new(f64::NAN, 0.0, 0.0, 0.0) } else { rotor.scale(scale) }
+            };
+            let broken = match &track.stored {
+                Stored::Angles(_) => {
+                    track.with_angles(&(first..=last).map(|key| (key, [f64::NAN; 3])).collect::<Vec<_>>())
+                }
+                _ => {
+                    let mut keys = track.keys.to_vec();
+                    keys[first..=last].iter_mut().for_each(|key| *key = off(*key));
+                    RotationTrack { keys: keys.into(), ..track.clone() }
+                }
+            };
+            (broken, planted((first, last)))
+        }
+        SnagKind::SignFlip => {
+            let (first, mut last) = run(random, count, 1, count / 3, 4);
+            if random.unit() < 0.3 && first * 4 > count {
+                last = count - 1;
+            }
+            let mut keys = track.keys.to_vec();
+            keys[first..=last].iter_mut().for_each(|key| *key = -*key);
+            (RotationTrack { keys: keys.into(), ..track.clone() }, planted((first, last)))
+        }
+        SnagKind::LongWay => {
+            // The same keys as a cubic, from somewhere on with the opposite sign.
+            let key = random.whole(2, count - 3);
+            let mut keys: Vec<Rotor> = poses.clone();
+            for i in 1..count {
+                keys[i] = keys[i].aligned_to(keys[i - 1]);
+            }
+            keys[key..].iter_mut().for_each(|own| *own = -*own);
+            let tangents: Vec<[Rotor; 2]> = keys.iter().map(|own| [own.scale(0.0); 2]).collect();
+            let broken = RotationTrack {
+                keys: keys.into(),
+                paths: Paths::Every(PathKind::Cubic),
+                tangents: Some(tangents.into()),
+                ..track.clone()
+            };
+            (broken, planted((key - 1, key)))
+        }
+        SnagKind::Wrap | SnagKind::MirroredAngles => {
+            let angles = track.file_angles().filter(|angles| angles.axes.len() == 3)?;
+            let (first, last) = run(random, count, 1, count / 3, 3);
+            let channel = random.whole(0, 2);
+            let turns = [360.0, -360.0, 720.0][random.whole(0, 2)];
+            let folded = random.unit() < 0.5;
+            let fold = |angle: f64| if folded { angle - 360.0 * (angle / 360.0).round() } else { angle };
+            let triple = |key: usize| {
+                let mut own = angles.degrees[key];
+                if kind == SnagKind::Wrap {
+                    own[channel] += turns;
+                } else {
+                    own = [own[0] + 180.0, 180.0 - own[1], own[2] + 180.0].map(fold);
+                }
+                (key, own)
+            };
+            let broken = track.with_angles(&(first..=last).map(triple).collect::<Vec<_>>());
+            (broken, planted((first, last)))
+        }
+        SnagKind::HalfTurn => {
+            let least = if random.unit() < 0.1 { 1 } else { 5 };
+            let (first, last) = run(random, count, least, (count / 3).max(6), 5);
+            let limb = clip
+                .skeleton
+                .children(joint)
+                .first()
+                .map(|&child| clip.skeleton.joints()[child].rest.translation);
+            let axis = limb.filter(|_| random.unit() < 0.5).and_then(DVec3::try_normalize);
+            let offset = half_turn(axis.unwrap_or_else(|| random.direction()));
+            let turned: Vec<Rotor> = poses[first..=last].iter().map(|pose| *pose * offset).collect();
+            (with_poses(track, first, &turned), planted((first, last)))
+        }
+        SnagKind::Spike => {
+            let (first, last) = run(random, count, 1, 3, 6);
+            let rate = 1.0 / track.times.median_step()?;
+            let least = if rate > 50.0 { 10.0 } else { 20.0 };
+            let size = random.between(least, 70.0);
+            let axis = random.direction();
+            let off: Vec<Rotor> = poses[first..=last]
+                .iter()
+                .map(|pose| {
+                    let angle = (size * random.between(0.8, 1.2)).to_radians();
+                    *pose * Rotor::from_plane_angles(Bivector::from_axis(axis * angle))
+                })
+                .collect();
+            (with_poses(track, first, &off), planted((first, last)))
+        }
+    })
+}
+
+#[derive(Default)]
+struct Score {
+    planted: usize,
+    found: usize,
+    false_flags: usize,
+    /// Degrees, after mending, by slerp across, and as it was.
+    mended: Vec<f64>,
+    slerp: Vec<f64>,
+    was: Vec<f64>,
+}
+
+fn median(values: &[f64]) -> f64 {
+    let mut sorted = values.to_vec();
+    sorted.sort_by(f64::total_cmp);
+    sorted.get(sorted.len() / 2).copied().unwrap_or(0.0)
+}
+
+/// Whether a snag is the planted fault: its kind and its keys, to a key at each end.
+fn is_it(snag: &Snag, planted: &Planted) -> bool {
+    snag.joint == planted.joint
+        && snag.kind == planted.kind
+        && snag.first_key.abs_diff(planted.first) <= 1
+        && snag.last_key.abs_diff(planted.last) <= 1
+}
+
+/// Whether a snag lies where a fault was planted, whatever it is called.
+fn touches(snag: &Snag, planted: &Planted) -> bool {
+    snag.joint == planted.joint && snag.first_key <= planted.last + 1 && snag.last_key + 1 >= planted.first
+}
+
+struct Table {
+    scores: BTreeMap<SnagKind, Score>,
+    missed: Vec<String>,
+    wrong: Vec<String>,
+}
+
+/// Plants into sound joints of a clip and scores what the survey makes of it.
+fn trial(ground: &Ground, seed: u64, table: &mut Table) {
+    let mut random = Random::new(seed);
+    let clip = &*ground.clip;
+    let mut broken = clip.clone();
+    let mut all = Vec::new();
+    for joint in clip.skeleton.listed() {
+        let Some(track) = clip.rotation(joint).filter(|track| track.keys.len() >= 16) else { continue };
+        let is_sound = !ground.snags.iter().any(|snag| snag.joint == joint);
+        if !is_sound || random.unit() < 0.5 {
+            continue;
+        }
+        let kinds = kinds(track);
+        let kind = kinds[random.whole(0, kinds.len() - 1)];
+        if let Some((track, planted)) = plant(&mut random, clip, joint, kind) {
+            broken = broken.with_rotation(joint, track);
+            all.push(planted);
+        }
+    }
+    let survey = survey(&broken);
+    for planted in &all {
+        let score = table.scores.entry(planted.kind).or_default();
+        score.planted += 1;
+        let snag = survey.snags.iter().find(|snag| is_it(snag, planted));
+        let label = clip.skeleton.label(planted.joint);
+        let frame = |key: usize| clip.grid.frame(clip.rotation(planted.joint).unwrap().times.at(key));
+        if snag.is_none() {
+            let instead: Vec<&str> = survey
+                .snags
+                .iter()
+                .filter(|snag| touches(snag, planted))
+                .map(|snag| snag.text.as_str())
+                .collect();
+            table.missed.push(format!(
+                "{seed} {} {label} {} frames {} to {}: {instead:?}",
+                ground.name,
+                planted.kind,
+                frame(planted.first),
+                frame(planted.last)
+            ));
+            continue;
+        }
+        score.found += 1;
+        let [truth, was, mended] =
+            [clip, &broken, &survey.mended].map(|clip| clip.rotation(planted.joint).unwrap());
+        let ends = (planted.first - 1, planted.last + 1);
+        for key in planted.first..=planted.last {
+            let error = |pose: Rotor| pose.turn_to(truth.sound_key(key)).to_degrees();
+            score.mended.push(error(mended.sound_key(key)));
+            score.was.push(error(was.sound_key(key)));
+            if ends.1 < truth.keys.len() {
+                let share = (truth.times.at(key) - truth.times.at(ends.0))
+                    / (truth.times.at(ends.1) - truth.times.at(ends.0));
+                score.slerp.push(error(slerp(truth.sound_key(ends.0), truth.sound_key(ends.1), share)));
+            }
+        }
+    }
+    for snag in &survey.snags {
+        let known = |natural: &Snag| natural.joint == snag.joint;
+        if !all.iter().any(|planted| touches(snag, planted)) && !ground.snags.iter().any(known) {
+            table.scores.entry(snag.kind).or_default().false_flags += 1;
+            table.wrong.push(format!("{seed} {}: {}", ground.name, snag.text));
+        }
+    }
+}
+
+#[test]
+fn planted_faults_are_found_and_mended() {
+    let mut table = Table { scores: BTreeMap::new(), missed: Vec::new(), wrong: Vec::new() };
+    let mut seed = 1;
+    for file in FILES {
+        let Some(grounds) = grounds(file) else { return };
+        for ground in &grounds {
+            if ground.clip.grid.count() < 16 {
+                continue;
+            }
+            let rounds = if ground.clip.grid.count() > 300 { 6 } else { 3 };
+            for _ in 0..rounds {
+                trial(ground, seed, &mut table);
+                seed += 1;
+            }
+        }
+    }
+    if std::env::var_os("PLANTER_DETAILS").is_some() {
+        for line in &table.missed {
+            println!("missed {line}");
+        }
+        for line in &table.wrong {
+            println!("wrong {line}");
+        }
+    }
+    println!(
+        "kind             planted  recall  precision   mended°  median slerp°  median was°  95th mended°"
+    );
+    for (kind, score) in &table.scores {
+        let recall = score.found as f64 / score.planted as f64;
+        let precision = score.found as f64 / (score.found + score.false_flags) as f64;
+        let mut sorted = score.mended.clone();
+        sorted.sort_by(f64::total_cmp);
+        println!(
+            "{:16} {:7}  {recall:6.3}  {precision:9.3}  {:8.4}  {:13.3}  {:11.2}  {:12.3}",
+            kind.name(),
+            score.planted,
+            median(&score.mended),
+            median(&score.slerp),
+            median(&score.was),
+            sorted.get(sorted.len() * 95 / 100).copied().unwrap_or(0.0)
+        );
+    }
+}
