@@ -59,6 +59,8 @@ pub fn limbs_of_skeleton(skeleton: &Skeleton, world: &[WorldJoint]) -> Vec<Figur
 pub struct Girth {
     /// The length of a long limb of this skeleton, world units.
     long_limb: f64,
+    /// Whether there are enough limbs to tell which of them are far too long to be one.
+    has_ties: bool,
 }
 
 impl Girth {
@@ -71,8 +73,12 @@ impl Girth {
             .collect();
         lengths.sort_by(f64::total_cmp);
         // Not the longest: one limb may reach from the world's origin to the hips.
-        let place = lengths.len().saturating_sub(1) * 85 / 100;
-        Self { long_limb: lengths.get(place).copied().unwrap_or(1.0) }
+        let place = lengths.len().saturating_sub(1) * 9 / 10;
+        // Joints that hang on nothing have no limbs: their balls go by how far apart they are.
+        let spread =
+            || Bounds::of_points(limbs.iter().map(|limb| limb.from)).map(|bounds| bounds.size() / 4.0);
+        let long_limb = lengths.get(place).copied().or_else(spread).filter(|length| *length > 0.0);
+        Self { long_limb: long_limb.unwrap_or(1.0), has_ties: lengths.len() >= 8 }
     }
 
     /// From the rest pose, which no clip changes.
@@ -80,8 +86,17 @@ impl Girth {
         Self::of_limbs(&limbs_of_skeleton(skeleton, &skeleton.world(&skeleton.rest_pose())))
     }
 
+    /// Whether a limb of this length is only a tie: from the world's origin to the hips, or from the body to a handle
+    /// that steers a foot. Such ties are drawn thin, or they would hide the figure.
+    fn is_tie(self, length: f64) -> bool {
+        self.has_ties && length > 2.0 * self.long_limb
+    }
+
     /// Radius at the joint and at the end of a limb of this length.
     fn radii(self, length: f64) -> [f64; 2] {
+        if self.is_tie(length) {
+            return [0.02 * self.long_limb; 2];
+        }
         if length <= 1e-9 * self.long_limb {
             return [0.055 * self.long_limb; 2];
         }
@@ -130,6 +145,11 @@ impl Figure {
     pub fn new(limbs: Vec<FigureLimb>, style: FigureStyle) -> Self {
         let girth = Girth::of_limbs(&limbs);
         Self { limbs, girth, style, chosen: None, hovered: None }
+    }
+
+    /// Whether a limb is only a tie: see [`Girth`].
+    pub(super) fn is_tie(&self, limb: &FigureLimb) -> bool {
+        self.girth.is_tie(limb.from.distance(limb.to))
     }
 
     /// The box around all limb ends; nothing when none is finite.
@@ -223,7 +243,8 @@ fn fade(behind: f64) -> f32 {
 }
 
 fn limb_style(figure: &Figure, limb: &FigureLimb, theme: &Theme, scale: f32) -> SolidStyle {
-    let is_ball = limb.from == limb.to;
+    let length = limb.from.distance(limb.to);
+    let is_plain = length == 0.0 || figure.girth.is_tie(length);
     let is_chosen = figure.chosen == Some(limb.joint);
     let is_hovered = figure.hovered == Some(limb.joint);
     let base = match figure.style {
@@ -232,10 +253,11 @@ fn limb_style(figure: &Figure, limb: &FigureLimb, theme: &Theme, scale: f32) -> 
     };
     let color = if is_chosen { theme.selection } else { base };
     let color = if is_hovered { color.mix(Color::rgb(0xFF_FF_FF), 0.3) } else { color };
+    let color = if figure.girth.is_tie(length) { color.mix(theme.background, 0.45) } else { color };
     let is_solid = figure.style == FigureStyle::After;
     SolidStyle {
         color,
-        mark: (is_solid && !is_ball).then(|| color.mix(Color::rgb(0), 0.45)),
+        mark: (is_solid && !is_plain).then(|| color.mix(Color::rgb(0), 0.45)),
         ring: is_chosen.then_some((1.25 * scale, theme.text)),
         halo: if is_solid { 3.0 * scale } else { 0.5 },
     }
@@ -321,8 +343,21 @@ mod tests {
             assert!(from_a > to_a && from_a < 0.2);
         }
         let broken = FigureLimb { from: DVec3::NAN, to: DVec3::ZERO, joint: 0 };
-        assert_eq!(Girth::of_limbs(&[broken]), Girth { long_limb: 1.0 });
+        assert_eq!(Girth::of_limbs(&[broken]), Girth { long_limb: 1.0, has_ties: false });
         assert_eq!(Figure::new(vec![broken], FigureStyle::After).bounds().unwrap().size(), 0.0);
+    }
+
+    #[test]
+    fn a_tie_to_the_worlds_origin_is_thin_but_a_long_boom_is_not() {
+        let chain = |count: usize, last: f64| {
+            let place = |i: usize| DVec3::X * (i as f64 + if i == count { last - 1.0 } else { 0.0 });
+            (0..count).map(|i| FigureLimb { from: place(i), to: place(i + 1), joint: i }).collect::<Vec<_>>()
+        };
+        let many = Girth::of_limbs(&chain(12, 6.0));
+        assert!(many.is_tie(6.0) && !many.is_tie(1.9));
+        assert!(many.radii(6.0)[0] < many.radii(1.0)[0] / 3.0);
+        let few = Girth::of_limbs(&chain(4, 6.0));
+        assert!(!few.is_tie(6.0));
     }
 
     #[test]

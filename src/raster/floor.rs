@@ -130,7 +130,7 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
     let mut touched = (height, 0);
     for figure in figures {
         let size = figure.bounds().map_or(1.0, |bounds| bounds.size()).max(1e-9);
-        for limb in &figure.limbs {
+        for limb in figure.limbs.iter().filter(|limb| !figure.is_tie(limb)) {
             let lift = limb.from.y.midpoint(limb.to.y) - floor.center.y;
             let height_share = lift / size;
             if !(-0.05..1.5).contains(&height_share) {

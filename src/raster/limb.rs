@@ -177,13 +177,15 @@ impl Canvas {
                 let lanes = surface.lanes(start);
                 for (lane, (pixel, standing)) in pixels.iter_mut().zip(depths).enumerate() {
                     let alpha = lanes.alpha[lane];
-                    if alpha == 0 {
-                        // Beside the limb: darken what stands well behind it.
-                        let near = halo - lanes.distance[lane];
+                    if alpha < 255 {
+                        // Beside the limb and under its soft rim: darken what stands well behind it.
+                        let near = ((halo - lanes.distance[lane]) / halo).min(1.0);
                         if near > 0.0 && *standing != FAR && *standing < lanes.behind[lane] {
-                            mix_pixel(pixel, [0, 0, 0], (near / halo * 150.0) as u32);
+                            mix_pixel(pixel, [0, 0, 0], (near * 130.0) as u32);
                         }
-                        continue;
+                        if alpha == 0 {
+                            continue;
+                        }
                     }
                     let key = lanes.key[lane];
                     if key <= *standing {

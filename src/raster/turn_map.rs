@@ -3,9 +3,7 @@
 use glam::Vec2;
 
 use crate::raster::canvas::Canvas;
-use crate::raster::chart::{
-    Area, SMALL, Scale, SnagMark, decimal_step, draw_letter, draw_playhead, draw_time_axis,
-};
+use crate::raster::chart::{Area, SMALL, Scale, SnagMark, draw_letter, draw_playhead, draw_time_axis};
 use crate::raster::image::Image;
 use crate::raster::palette::{Color, Theme, cividis};
 use crate::raster::text::{Align, TextStyle, draw_text, draw_text_centered, elide, text_width};
@@ -40,7 +38,7 @@ pub struct TurnMap {
     pub chosen: Option<usize>,
 }
 
-/// A round value that all but the fastest one in a hundred of the values stay below: one broken joint must not make
+/// A round value that all but the fastest one in fifty of the values stay below: one broken joint must not make
 /// all others look still. At least 1.
 pub fn full_scale<'a>(rows: impl IntoIterator<Item = &'a [f32]>) -> f32 {
     let mut values: Vec<f32> =
@@ -48,9 +46,11 @@ pub fn full_scale<'a>(rows: impl IntoIterator<Item = &'a [f32]>) -> f32 {
     if values.is_empty() {
         return 1.0;
     }
-    let place = (values.len() - 1) * 99 / 100;
+    let place = (values.len() - 1) * 98 / 100;
     let (_, value, _) = values.select_nth_unstable_by(place, f32::total_cmp);
-    decimal_step(f64::from(value.max(1.0))) as f32
+    let (value, power) = (value.max(1.0), 10_f32.powf(value.max(1.0).log10().floor()));
+    let round = [1.0, 1.5, 2.0, 3.0, 4.0, 5.0, 6.0, 8.0].into_iter().map(|lead| lead * power);
+    round.into_iter().find(|&round| round >= value * 0.999).unwrap_or(10.0 * power)
 }
 
 /// The heat alone: rows from the top, spread evenly over the height; frames from the left, spread evenly over the
@@ -255,6 +255,9 @@ mod tests {
         let calm: Vec<f32> = (0..990).map(|i| i as f32 / 10.0).collect();
         let broken = [1e6, f32::NAN, f32::INFINITY];
         assert_eq!(full_scale([&calm[..], &broken[..]]), 100.0);
+        assert_eq!(full_scale([&[130.0_f32; 9][..]]), 150.0);
+        assert_eq!(full_scale([&[0.2_f32; 9][..]]), 1.0);
+        assert_eq!(full_scale([&[999.0_f32; 9][..]]), 1000.0);
         assert_eq!(full_scale([]), 1.0);
     }
 

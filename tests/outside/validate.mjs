@@ -1,19 +1,25 @@
-// Runs the Khronos glTF validator on written files and compares each with the file it was made from.
+// Runs the Khronos glTF validator on a written file and compares it with the file it was made from.
 //
+//   node tests/outside/validate.mjs SOURCE RESULT
+//   node tests/outside/validate.mjs RESULT               a file without a source
 //   node tests/outside/validate.mjs --list PAIRS.tsv     lines of SOURCE<tab>RESULT
-//   node tests/outside/validate.mjs RESULT…              files without a source
 //
 // Exits with 1 when a result has an error or warning that its source has not (or any, without a source), and with 2
-// when nothing was checked. The package `gltf-validator` is looked for where the command is run and in NODE_PATH.
+// when nothing was checked. The package `gltf-validator` is looked for under target/outside, then where the command is
+// run, then in NODE_PATH.
 
 import { createRequire } from "node:module";
 import { readFileSync } from "node:fs";
 import { dirname, join, resolve } from "node:path";
 
-const require = createRequire(join(process.cwd(), "here.js"));
-const validator = require("gltf-validator");
-
-const SEVERITIES = ["errors", "warnings"];
+const installed = createRequire(join(process.cwd(), "target/outside/package.json"));
+const here = createRequire(join(process.cwd(), "package.json"));
+let validator;
+try {
+  validator = installed("gltf-validator");
+} catch {
+  validator = here("gltf-validator");
+}
 
 async function report(file) {
   const bytes = new Uint8Array(readFileSync(file));
@@ -37,11 +43,12 @@ function counts(issues) {
 }
 
 function pairsOf(args) {
-  if (args[0] !== "--list") {
-    return args.map((result) => [null, result]);
+  if (args[0] === "--list") {
+    const lines = readFileSync(args[1], "utf8").split("\n").filter((line) => line !== "");
+    return lines.map((line) => line.split("\t"));
   }
-  const lines = readFileSync(args[1], "utf8").split("\n").filter((line) => line !== "");
-  return lines.map((line) => line.split("\t"));
+  if (args.length === 2) return [args];
+  return args.map((result) => [null, result]);
 }
 
 let worse = 0;
@@ -51,7 +58,7 @@ for (const [source, result] of pairs) {
   const before = source === null ? null : (await report(source)).issues;
   const allowed = before === null ? new Map() : counts(before);
   const fresh = [...counts(after)].filter(([code, n]) => n > (allowed.get(code) ?? 0));
-  const numbers = (issues) => SEVERITIES.map((name) => issues[name === "errors" ? "numErrors" : "numWarnings"]).join("/");
+  const numbers = (issues) => `${issues.numErrors}/${issues.numWarnings}`;
   const was = before === null ? "" : ` (source ${numbers(before)})`;
   console.log(`${fresh.length === 0 ? "ok " : "BAD"} ${result}: ${numbers(after)} errors/warnings${was}`);
   for (const [code, n] of fresh) {

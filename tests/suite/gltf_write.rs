@@ -304,6 +304,55 @@ fn repeated_key_times_are_gone_from_a_sampler_that_changed() {
 }
 
 #[test]
+fn every_outside_file_changes_its_form_and_plays_the_same() {
+    let mut pairs = String::new();
+    for path in outside_files() {
+        let (document, clips, _) = open(&path);
+        let other = match document.form() {
+            gltf::Form::Glb => gltf::Form::Text,
+            gltf::Form::Text => gltf::Form::Glb,
+        };
+        let changed = clips.iter().enumerate().find_map(|(index, clip)| Some((index, some_key(clip)?)));
+        let after: Vec<Clip> = match changed {
+            Some((index, (joint, key))) => {
+                let nudge =
+                    |(at, clip)| if at == index { nudged(clip, joint, key) } else { Clip::clone(clip) };
+                clips.iter().enumerate().map(nudge).collect()
+            }
+            None => clips.clone(),
+        };
+        let edits: Vec<(usize, &Clip, &Clip)> =
+            clips.iter().zip(&after).enumerate().map(|(index, (a, b))| (index, a, b)).collect();
+        for (kind, edits) in [("same", &[][..]), ("nudged", &edits[..])] {
+            let stem = format!("{}-{kind}-other-form", path.file_stem().unwrap().to_string_lossy());
+            let output = gltf::write_as(&document, edits, &stem, other).unwrap();
+            let (again, found) = read_back(&output, &path);
+            assert_eq!(again.form(), other);
+            assert!(
+                found == if kind == "same" { clips.clone() } else { after.clone() },
+                "{}",
+                path.display()
+            );
+            let ending = if other == gltf::Form::Glb { "glb" } else { "gltf" };
+            let folder = written_folder().join("form");
+            let target = folder.join(format!("{stem}.{ending}"));
+            disk::write(&target, &output.bytes).unwrap();
+            if let Some((name, bytes)) = &output.bin {
+                disk::write(&folder.join(name), bytes).unwrap();
+            }
+            for file in &output.external {
+                let bytes = disk::read(&path.with_file_name("").join(file)).unwrap();
+                disk::write(&folder.join(file), &bytes).unwrap();
+            }
+            pairs += &format!("{}\t{}\n", path.display(), target.display());
+        }
+    }
+    if !pairs.is_empty() {
+        disk::write(&written_folder().join("form-pairs.tsv"), pairs.as_bytes()).unwrap();
+    }
+}
+
+#[test]
 fn integers_become_floats_and_say_so() {
     let Some(path) = outside_files().into_iter().find(|path| path.ends_with("Fox_gltfpack.glb")) else {
         return;

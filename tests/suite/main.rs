@@ -7,7 +7,6 @@
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
 //! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
 //! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
-//! | `gltf` | glTF and GLB files: reading, patching, the validator |
 //! | `golden` | comparing a picture with the one a person accepted |
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
 //! | `raster` | small pictures of one subject each |

@@ -122,3 +122,23 @@ fn word(bytes: &[u8], at: usize) -> Option<u32> {
     let four = bytes.get(at..at.checked_add(4)?)?;
     Some(u32::from_le_bytes(four.try_into().ok()?))
 }
+
+/// A GLB of chunks, kind and data, each already padded.
+pub(super) fn assemble(chunks: &[(u32, Vec<u8>)]) -> Result<Vec<u8>, GltfError> {
+    let length =
+        chunks.iter().fold(12_usize, |sum, (_, data)| sum.saturating_add(data.len()).saturating_add(8));
+    let Ok(length_field) = u32::try_from(length) else {
+        return Err(GltfError::unlike("GLB header", "at most 4294967295 bytes", format!("{length} bytes")));
+    };
+    let mut bytes = Vec::with_capacity(length);
+    bytes.extend_from_slice(b"glTF");
+    bytes.extend_from_slice(&2_u32.to_le_bytes());
+    bytes.extend_from_slice(&length_field.to_le_bytes());
+    for (kind, data) in chunks {
+        // No chunk is longer than the whole, which fits.
+        bytes.extend_from_slice(&(data.len() as u32).to_le_bytes());
+        bytes.extend_from_slice(&kind.to_le_bytes());
+        bytes.extend_from_slice(data);
+    }
+    Ok(bytes)
+}

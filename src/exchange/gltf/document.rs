@@ -14,6 +14,15 @@ use super::container::Container;
 use super::json::At;
 use super::uri::{self, Uri};
 
+/// The two forms of a document.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Form {
+    /// `.glb`: one binary file.
+    Glb,
+    /// `.gltf`: JSON text, with buffers inside it or beside it.
+    Text,
+}
+
 /// A document, every byte of it, with what its clips were made of.
 #[derive(Clone)]
 pub struct Document {
@@ -61,9 +70,12 @@ impl Document {
         self.animations.len()
     }
 
-    /// Whether it is a `.glb`, and not JSON text.
-    pub fn is_glb(&self) -> bool {
-        matches!(self.container, Container::Glb(_))
+    /// Binary or text.
+    pub fn form(&self) -> Form {
+        match self.container {
+            Container::Glb(_) => Form::Glb,
+            Container::Text(_) => Form::Text,
+        }
     }
 
     /// The files beside it that it refers to (buffers and images), as paths relative to its folder, sorted. References

@@ -18,6 +18,7 @@ mod container;
 mod curve;
 mod document;
 mod error;
+mod finish;
 mod json;
 mod limbs;
 mod new_file;
@@ -29,8 +30,8 @@ mod tracks;
 mod uri;
 mod write;
 
-pub use document::Document;
+pub use document::{Document, Form};
 pub use error::{GltfError, GltfErrorKind};
 pub use new_file::from_clip;
 pub use read::read;
-pub use write::{Output, write};
+pub use write::{Output, write, write_as};

@@ -13,7 +13,7 @@ use super::container;
 use super::curve::{self, Curve};
 use super::error::GltfError;
 use super::limbs;
-use super::write::{Output, assemble_glb};
+use super::write::Output;
 
 /// Neighbouring keys are kept at most this far apart: players that measure a little differently must not come to
 /// different short ways.
@@ -81,7 +81,7 @@ pub fn from_clip(clip: &Clip, stem: &str) -> Result<Output, GltfError> {
     if !bin.is_empty() {
         chunks.push((container::BIN, bin));
     }
-    Ok(Output { bytes: assemble_glb(&chunks)?, bin: None, external: Vec::new(), notes })
+    Ok(Output { bytes: container::assemble(&chunks)?, bin: None, external: Vec::new(), notes })
 }
 
 /// The node of a joint at rest. What glTF takes for granted is left out.

@@ -8,17 +8,14 @@ use crate::clip::{Clip, JointTracks};
 use crate::exchange::Note;
 
 use super::accessor::Component;
-use super::buffers::Loaded;
 use super::channels::Part;
-use super::container::{self, Chunk, Container};
 use super::curve::{self, Curve};
-use super::document::{Binding, Document, external_files};
+use super::document::{Binding, Document, Form};
 use super::error::GltfError;
 use super::json::At;
 use super::nodes;
 use super::patch::{Patch, Step};
 use super::tracks::Interpolation;
-use super::uri;
 
 /// A file ready to be put on disk.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -44,11 +41,25 @@ pub struct Output {
 /// # Errors
 /// When a clip does not belong to the document, or the result is beyond what a GLB can hold.
 pub fn write(document: &Document, clips: &[(usize, &Clip, &Clip)], stem: &str) -> Result<Output, GltfError> {
+    write_as(document, clips, stem, document.form())
+}
+
+/// As [`write()`], as `.glb` or `.gltf` whatever the document was. Where the two differ buffers and images move into or
+/// out of the binary chunk; nothing else changes for it.
+///
+/// # Errors
+/// As [`write()`].
+pub fn write_as(
+    document: &Document,
+    clips: &[(usize, &Clip, &Clip)],
+    stem: &str,
+    form: Form,
+) -> Result<Output, GltfError> {
     let mut writer = Writer::new(document);
     for &(animation, before, after) in clips {
         writer.animation(animation, before, after)?;
     }
-    writer.finish(stem)
+    writer.finish(stem, form)
 }
 
 /// A track that changed.
@@ -62,21 +73,22 @@ struct Change {
     keeps_times: bool,
 }
 
-struct Writer<'a> {
-    document: &'a Document,
-    patch: Patch<'a>,
+/// Collects what changed.
+pub(super) struct Writer<'a> {
+    pub(super) document: &'a Document,
+    pub(super) patch: Patch<'a>,
     /// The new bytes, and views and accessors on them as JSON; views start from 0 within the new bytes.
-    data: Vec<u8>,
-    views: Vec<[usize; 2]>,
-    accessors: Vec<Value>,
+    pub(super) data: Vec<u8>,
+    pub(super) views: Vec<[usize; 2]>,
+    pub(super) accessors: Vec<Value>,
     /// New input accessors by the bits of their times.
     inputs: HashMap<Vec<u32>, usize>,
     n_old_accessors: usize,
     n_old_views: usize,
     /// The buffer of the first output that changed.
-    buffer: Option<usize>,
-    n_from_integers: usize,
-    notes: Vec<Note>,
+    pub(super) buffer: Option<usize>,
+    pub(super) n_from_integers: usize,
+    pub(super) notes: Vec<Note>,
 }
 
 impl<'a> Writer<'a> {
@@ -290,127 +302,6 @@ impl<'a> Writer<'a> {
             self.patch.replace_member(&[Step::Key("nodes"), Step::At(number)], "matrix", &members);
         }
     }
-
-    fn finish(mut self, stem: &str) -> Result<Output, GltfError> {
-        let document = self.document;
-        if self.data.is_empty() {
-            let external = document.external_files();
-            return Ok(Output { bytes: document.original.clone(), bin: None, external, notes: self.notes });
-        }
-        if self.n_from_integers > 0 {
-            let text = format!(
-                "{} sampler(s) of normalised integers changed and are written as floats",
-                self.n_from_integers
-            );
-            self.notes.push(Note::new("animations", text));
-        }
-        let place = self.place();
-        let old: &[u8] = match &place {
-            Place::Chunk => document.container.bin().map_or(&[], |range| &document.original[range]),
-            Place::Buffer(_, loaded) => loaded.bytes(&document.original),
-            Place::New => &[],
-        };
-        let mut grown = padded(old, 0);
-        let start = grown.len();
-        grown.append(&mut self.data);
-
-        let n_buffers = At::root(&document.root).count("buffers");
-        let index = match &place {
-            Place::Chunk => 0,
-            Place::Buffer(index, _) => *index,
-            Place::New => n_buffers,
-        };
-        let views: Vec<Value> = self
-            .views
-            .iter()
-            .map(|[at, length]| json!({ "buffer": index, "byteOffset": start + at, "byteLength": length }))
-            .collect();
-        let mut bin = None;
-        let at = [Step::Key("buffers"), Step::At(index)];
-        let new_uri = match &place {
-            Place::Chunk => None,
-            Place::New | Place::Buffer(_, Loaded::Data(_) | Loaded::Chunk(_)) => {
-                Some(uri::write_data(&grown))
-            }
-            Place::Buffer(_, Loaded::File { .. }) => {
-                let name = self.free_name(stem, index);
-                let text = uri::write_file(&name);
-                bin = Some((name, grown.clone()));
-                Some(text)
-            }
-        };
-        if index < n_buffers {
-            self.patch.set(&at, "byteLength", &grown.len().to_string());
-            if let Some(uri) = &new_uri {
-                self.patch.set(&at, "uri", &Value::from(uri.as_str()).to_string());
-            }
-        } else {
-            let mut buffer = json!({ "byteLength": grown.len() });
-            if let Some(uri) = &new_uri {
-                buffer["uri"] = uri.as_str().into();
-            }
-            self.patch.extend(&[], "buffers", &[buffer.to_string()]);
-        }
-        self.patch.extend(&[], "bufferViews", &texts(&views));
-        self.patch.extend(&[], "accessors", &texts(&self.accessors));
-        let text = self.patch.finish();
-        let mut external = document.external_files();
-        if let Some((name, _)) = &bin {
-            // What the buffer referred to may now be referred to by nobody.
-            let patched: Value = serde_json::from_str(&text).unwrap_or_default();
-            external = external_files(&patched);
-            external.retain(|file| file != name);
-        }
-        let bytes = match &document.container {
-            Container::Text(_) => text.into_bytes(),
-            Container::Glb(chunks) => {
-                let new_bin = matches!(place, Place::Chunk).then_some(grown);
-                rebuild_glb(&document.original, chunks, &text, new_bin)?
-            }
-        };
-        Ok(Output { bytes, bin, external, notes: self.notes })
-    }
-
-    /// Where new data goes: behind the binary chunk of a GLB; in a text behind the data that changed.
-    fn place(&self) -> Place<'a> {
-        let document: &'a Document = self.document;
-        let root = At::root(&document.root);
-        if document.is_glb() {
-            let first = root.element("buffers", 0);
-            return if first.is_ok_and(|first| first.get("uri").is_some()) {
-                Place::New
-            } else {
-                Place::Chunk
-            };
-        }
-        let loaded = self.buffer.and_then(|index| Some((index, document.loaded.get(index)?.as_ref()?)));
-        loaded.map_or(Place::New, |(index, loaded)| Place::Buffer(index, loaded))
-    }
-
-    /// A name for the new buffer file that no other reference of the document has.
-    fn free_name(&self, stem: &str, index: usize) -> String {
-        let root = At::root(&self.document.root);
-        let own = root.element("buffers", index).ok().and_then(|buffer| buffer.text("uri").ok().flatten());
-        let is_taken = |name: &str| {
-            let files = external_files(&self.document.root);
-            let is_own = own.is_some_and(|own| {
-                uri::parse(own, "").is_ok_and(|own| own == uri::Uri::File(name.to_owned()))
-            });
-            files.iter().any(|file| file == name) && !is_own
-        };
-        let plain = format!("{stem}.bin");
-        if is_taken(&plain) { format!("{stem}-animation.bin") } else { plain }
-    }
-}
-
-/// Where new data goes.
-enum Place<'a> {
-    /// The binary chunk.
-    Chunk,
-    /// A buffer with a URI.
-    Buffer(usize, &'a Loaded),
-    /// A buffer of its own.
-    New,
 }
 
 fn curve_of(tracks: &JointTracks, part: Part) -> Option<Curve> {
@@ -430,58 +321,7 @@ fn buffer_of(root: &At<'_>, sampler: &At<'_>) -> Option<usize> {
     })
 }
 
-fn texts(values: &[Value]) -> Vec<String> {
+/// JSON values as texts.
+pub(super) fn texts(values: &[Value]) -> Vec<String> {
     values.iter().map(Value::to_string).collect()
-}
-
-/// A copy that ends on four bytes.
-fn padded(bytes: &[u8], with: u8) -> Vec<u8> {
-    let mut copy = bytes.to_vec();
-    copy.resize(bytes.len().next_multiple_of(4), with);
-    copy
-}
-
-/// A GLB of the old chunks with another JSON text and, where given, another binary chunk.
-fn rebuild_glb(
-    original: &[u8],
-    chunks: &[Chunk],
-    json: &str,
-    bin: Option<Vec<u8>>,
-) -> Result<Vec<u8>, GltfError> {
-    let has_bin = chunks.iter().any(|chunk| chunk.kind == container::BIN);
-    let mut bin = bin.map(|bin| padded(&bin, 0));
-    let mut parts = vec![(container::JSON, padded(json.as_bytes(), b' '))];
-    if !has_bin && let Some(bin) = bin.take() {
-        parts.push((container::BIN, bin));
-    }
-    for chunk in chunks.iter().skip(1) {
-        match bin.take_if(|_| chunk.kind == container::BIN) {
-            Some(bin) => parts.push((container::BIN, bin)),
-            None => parts.push((chunk.kind, original[chunk.data.clone()].to_vec())),
-        }
-    }
-    let mut bytes = assemble_glb(&parts)?;
-    // What follows the end that the header names belongs to no chunk, and is kept all the same.
-    let end = chunks.last().map_or(original.len(), |chunk| chunk.data.end);
-    bytes.extend_from_slice(&original[end..]);
-    Ok(bytes)
-}
-
-/// A GLB of chunks, each already padded.
-pub(super) fn assemble_glb(chunks: &[(u32, Vec<u8>)]) -> Result<Vec<u8>, GltfError> {
-    let length = 12 + chunks.iter().map(|(_, data)| 8 + data.len()).sum::<usize>();
-    let Ok(length_field) = u32::try_from(length) else {
-        return Err(GltfError::unlike("GLB header", "at most 4294967295 bytes", format!("{length} bytes")));
-    };
-    let mut bytes = Vec::with_capacity(length);
-    bytes.extend_from_slice(b"glTF");
-    bytes.extend_from_slice(&2_u32.to_le_bytes());
-    bytes.extend_from_slice(&length_field.to_le_bytes());
-    for (kind, data) in chunks {
-        // No chunk is longer than the whole, which fits.
-        bytes.extend_from_slice(&(data.len() as u32).to_le_bytes());
-        bytes.extend_from_slice(&kind.to_le_bytes());
-        bytes.extend_from_slice(data);
-    }
-    Ok(bytes)
 }
