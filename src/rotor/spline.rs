@@ -213,7 +213,9 @@ impl Cubic {
 /// term from the round before.
 fn rates_at_keys(secs: &[f64], arcs: &[DVec3], ends: EndRates) -> Result<Vec<DVec3>, SplineError> {
     /// 3 to 8 are usual; near half turns it takes many more.
-    const MOST_ROUNDS: usize = 300;
+    const MOST_ROUNDS: usize = 1000;
+    /// Of 200 000 random curves with steps up to 178° all settle with this; with full steps alone up to 3 in 2000 did not.
+    const SMALLEST_SHARE: f64 = 0.2;
     let n = secs.len();
     // The secants are also a good first guess for the keys within.
     let mut rates: Vec<DVec3> = std::iter::once(arcs[0] / secs[0])
@@ -226,7 +228,7 @@ fn rates_at_keys(secs: &[f64], arcs: &[DVec3], ends: EndRates) -> Result<Vec<DVe
     if n == 1 {
         return Ok(rates);
     }
-    let mut change = f64::INFINITY;
+    let (mut change, mut share) = (f64::INFINITY, 1.0_f64);
     for round in 1..=MOST_ROUNDS {
         let next = solve_round(secs, arcs, &rates);
         let size = next.iter().fold(0.0, |size: f64, rate| size.max(rate.length()));
@@ -235,10 +237,16 @@ fn rates_at_keys(secs: &[f64], arcs: &[DVec3], ends: EndRates) -> Result<Vec<DVe
             return Err(SplineError::NotSettled { change: f64::INFINITY, rounds: round });
         }
         let moved = next.iter().zip(&rates).fold(0.0, |moved: f64, (a, b)| moved.max((*a - *b).length()));
-        rates = next;
         // Rounding may keep it moving a little for ever: there, it is done when it moves no less than before.
         if moved <= 1e-15 * size || (moved <= 1e-12 * size && moved >= change) {
-            return Ok(rates);
+            return Ok(next);
+        }
+        // Where it swings to and fro, a part of the way leads on.
+        if moved >= change {
+            share = (share * 0.8).max(SMALLEST_SHARE);
+        }
+        for (rate, next) in rates.iter_mut().zip(next) {
+            *rate += (next - *rate) * share;
         }
         change = moved;
     }

@@ -323,8 +323,8 @@ proptest! {
     }
 
     #[test]
-    fn a_spline_settles_for_steps_up_to_160_degrees(
-        steps in prop::collection::vec((unit_vector(), 0.0..2.8_f64, 0.05..1.0_f64), 1..14),
+    fn a_spline_settles_for_steps_up_to_170_degrees(
+        steps in prop::collection::vec((unit_vector(), 0.0..2.967_f64, 0.05..1.0_f64), 1..14),
     ) {
         let (mut keys, mut times) = (vec![Rotor::IDENTITY], vec![0.0]);
         for (axis, angle, secs) in steps {
