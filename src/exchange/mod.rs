@@ -6,6 +6,7 @@ mod address;
 pub mod bvh;
 pub mod csv;
 pub mod disk;
+mod export;
 pub mod gltf;
 mod losses;
 mod note;
@@ -14,5 +15,6 @@ mod source;
 mod turns;
 
 pub use address::ClipAddress;
+pub use export::{Encoded, Guard, WriteError, Written, encode, write};
 pub use note::Note;
 pub use source::{Format, OpenError, OpenOptions, Source, open, open_bytes};

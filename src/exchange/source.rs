@@ -6,7 +6,7 @@ use std::sync::Arc;
 
 use crate::clip::Clip;
 
-use super::{Note, bvh, disk, gltf};
+use super::{Note, bvh, csv, disk, gltf};
 
 /// A clip format, told by the file's extension.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
@@ -17,11 +17,13 @@ pub enum Format {
     Glb,
     /// BVH text.
     Bvh,
+    /// Comma-separated values.
+    Csv,
 }
 
 impl Format {
     /// All formats.
-    pub const ALL: [Self; 3] = [Self::Gltf, Self::Glb, Self::Bvh];
+    pub const ALL: [Self; 4] = [Self::Gltf, Self::Glb, Self::Bvh, Self::Csv];
 
     /// The file extension, lower case, without a dot.
     pub const fn extension(self) -> &'static str {
@@ -29,6 +31,7 @@ impl Format {
             Self::Gltf => "gltf",
             Self::Glb => "glb",
             Self::Bvh => "bvh",
+            Self::Csv => "csv",
         }
     }
 
@@ -57,13 +60,17 @@ impl fmt::Display for Format {
             Self::Gltf => "glTF",
             Self::Glb => "GLB",
             Self::Bvh => "BVH",
+            Self::Csv => "CSV",
         })
     }
 }
 
 /// What a person may have to say about a file that does not say it itself.
 #[derive(Clone, Debug, Default, PartialEq)]
-pub struct OpenOptions {}
+pub struct OpenOptions {
+    /// Headers and time unit of a CSV file of another make.
+    pub csv: csv::CsvOptions,
+}
 
 /// A clip file that could not be opened.
 #[derive(Debug, thiserror::Error)]
@@ -86,6 +93,14 @@ pub enum OpenError {
         path: PathBuf,
         /// What and where.
         source: bvh::BvhError,
+    },
+    /// A CSV file that can't be read.
+    #[error("{path}: {source}", path = path.display())]
+    Csv {
+        /// The file.
+        path: PathBuf,
+        /// What and where.
+        source: csv::CsvError,
     },
     /// A glTF file that can't be read.
     #[error("{path}: {source}", path = path.display())]
@@ -119,6 +134,7 @@ pub struct Source {
 pub(super) enum Origin {
     Gltf(Arc<gltf::Document>),
     Bvh(Arc<bvh::Document>),
+    Csv(Arc<csv::Document>),
 }
 
 impl Source {
@@ -153,7 +169,7 @@ pub fn open(path: &Path, options: &OpenOptions) -> Result<Source, OpenError> {
 ///
 /// # Errors
 /// As [`open`].
-pub fn open_bytes(path: &Path, bytes: Vec<u8>, _options: &OpenOptions) -> Result<Source, OpenError> {
+pub fn open_bytes(path: &Path, bytes: Vec<u8>, options: &OpenOptions) -> Result<Source, OpenError> {
     let format = Format::of(path)?;
     let sha256 = disk::hash(&bytes);
     let name = path.file_stem().map(|stem| stem.to_string_lossy().into_owned()).unwrap_or_default();
@@ -172,7 +188,22 @@ pub fn open_bytes(path: &Path, bytes: Vec<u8>, _options: &OpenOptions) -> Result
                 bvh::read(&bytes, &name).map_err(|source| OpenError::Bvh { path: at(), source })?;
             (Origin::Bvh(Arc::new(document)), vec![clip], notes)
         }
+        Format::Csv => {
+            let companion = options.csv.hierarchy.is_none().then(|| companion_skeleton(path)).flatten();
+            let hierarchy = options.csv.hierarchy.clone().or(companion);
+            let csv_options = csv::CsvOptions { hierarchy, ..options.csv.clone() };
+            let (document, clip, notes) = csv::read(&bytes, &name, &csv_options)
+                .map_err(|source| OpenError::Csv { path: at(), source })?;
+            (Origin::Csv(Arc::new(document)), vec![clip], notes)
+        }
     };
     let clips = clips.into_iter().map(Arc::new).collect();
     Ok(Source { path: at(), format, sha256, clips, notes, origin })
+}
+
+/// The skeleton of `NAME_rot.csv` from a `NAME_hierarchy.csv` beside it. One that can't be read is no companion.
+fn companion_skeleton(path: &Path) -> Option<Vec<csv::Bone>> {
+    let stem = path.file_stem()?.to_str()?.strip_suffix("_rot")?;
+    let bytes = disk::read(&path.with_file_name(format!("{stem}_hierarchy.csv"))).ok()?;
+    csv::hierarchy(&bytes).ok()
 }

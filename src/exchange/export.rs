@@ -1,0 +1,231 @@
+//! Writing results: back into their own file with nothing else touched, or into another format.
+
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+use crate::clip::Clip;
+
+use super::source::{Format, OpenError, Origin, Source};
+use super::{Note, bvh, csv, disk, gltf};
+
+/// What keeps inputs from being overwritten.
+#[derive(Clone, Debug, Default)]
+pub struct Guard {
+    /// Files that the result was made from.
+    pub inputs: Vec<PathBuf>,
+    /// The user said that an input may be replaced.
+    pub force: bool,
+}
+
+impl Guard {
+    /// Guards one input.
+    pub fn of(input: &Path) -> Self {
+        Self { inputs: vec![input.to_owned()], force: false }
+    }
+
+    /// Fails when `target` is one of the inputs, by whatever path, and may not be replaced.
+    ///
+    /// # Errors
+    /// [`WriteError::WouldReplaceInput`].
+    pub fn check(&self, target: &Path) -> Result<(), WriteError> {
+        let same = |input: &PathBuf| match (input.canonicalize(), target.canonicalize()) {
+            (Ok(input), Ok(target)) => input == target,
+            _ => false,
+        };
+        if !self.force && self.inputs.iter().any(same) {
+            return Err(WriteError::WouldReplaceInput { path: target.to_owned() });
+        }
+        Ok(())
+    }
+}
+
+/// A result that could not be written.
+#[derive(Debug, thiserror::Error)]
+pub enum WriteError {
+    /// The file itself.
+    #[error(transparent)]
+    Disk(#[from] disk::DiskError),
+    /// No format of ours.
+    #[error(transparent)]
+    Format(#[from] OpenError),
+    /// The target is an input.
+    #[error("{path}: expected another file than the input, found the input itself; choose another name or say --force", path = path.display())]
+    WouldReplaceInput {
+        /// The target.
+        path: PathBuf,
+    },
+    /// There is no clip to write.
+    #[error("{path}: expected a clip to write, found none", path = path.display())]
+    NoClip {
+        /// The source.
+        path: PathBuf,
+    },
+    /// The results do not belong to the source.
+    #[error("{path}: expected a result for each of {expected} clips, found {found}", path = path.display())]
+    Count {
+        /// The source.
+        path: PathBuf,
+        /// Clips of the source.
+        expected: usize,
+        /// Results given.
+        found: usize,
+    },
+    /// The glTF document can't take the result.
+    #[error("{path}: {source}", path = path.display())]
+    Gltf {
+        /// The target.
+        path: PathBuf,
+        /// What and where.
+        source: gltf::GltfError,
+    },
+}
+
+/// A result as bytes, with the file that has to lie beside it.
+#[derive(Clone, Debug)]
+pub struct Encoded {
+    /// The file itself.
+    pub bytes: Vec<u8>,
+    /// A buffer beside it: its file name and bytes.
+    pub beside: Option<(String, Vec<u8>)>,
+    /// Files beside the source that the result still refers to, relative to it.
+    pub along: Vec<String>,
+    /// What is worth telling: what the format could not hold, and how much it differs.
+    pub notes: Vec<Note>,
+}
+
+impl Encoded {
+    fn alone((bytes, notes): (Vec<u8>, Vec<Note>)) -> Self {
+        Self { bytes, beside: None, along: Vec::new(), notes }
+    }
+}
+
+impl From<gltf::Output> for Encoded {
+    fn from(output: gltf::Output) -> Self {
+        Self { bytes: output.bytes, beside: output.bin, along: output.external, notes: output.notes }
+    }
+}
+
+/// What was written where.
+#[derive(Clone, Debug)]
+pub struct Written {
+    /// The file.
+    pub path: PathBuf,
+    /// A buffer beside it.
+    pub beside: Option<PathBuf>,
+    /// What is worth telling.
+    pub notes: Vec<Note>,
+}
+
+/// Writes results to `target`, whose extension gives the format. See [`encode`].
+///
+/// # Errors
+/// When the target is an input and not to be replaced, the format is none of ours, or the system refuses.
+pub fn write(
+    source: &Source,
+    results: &[Arc<Clip>],
+    choice: Option<usize>,
+    target: &Path,
+    guard: &Guard,
+) -> Result<Written, WriteError> {
+    guard.check(target)?;
+    let mut encoded = encode(source, results, choice, target)?;
+    take_along(source, target, &mut encoded);
+    let beside = match &encoded.beside {
+        Some((name, bytes)) => {
+            let path = target.with_file_name(name);
+            guard.check(&path)?;
+            disk::write(&path, bytes)?;
+            Some(path)
+        }
+        None => None,
+    };
+    disk::write(target, &encoded.bytes)?;
+    Ok(Written { path: target.to_owned(), beside, notes: encoded.notes })
+}
+
+/// The bytes that [`write()`] would write.
+///
+/// `results` has one clip for each clip of the source. Within a format (glTF and GLB count as one) the source's own
+/// file is patched: what did not change keeps its bytes or text. Into another format, and for clips that were resampled,
+/// a new file is made; where that holds one clip only, it is the one of index `choice`, else the first.
+///
+/// # Errors
+/// As [`write()`], but for the disk.
+pub fn encode(
+    source: &Source,
+    results: &[Arc<Clip>],
+    choice: Option<usize>,
+    target: &Path,
+) -> Result<Encoded, WriteError> {
+    if results.len() != source.clips.len() {
+        let (expected, found) = (source.clips.len(), results.len());
+        return Err(WriteError::Count { path: source.path.clone(), expected, found });
+    }
+    let format = Format::of(target)?;
+    let stem = target.file_stem().map(|stem| stem.to_string_lossy().into_owned()).unwrap_or_default();
+    let gltf_error = |source| WriteError::Gltf { path: target.to_owned(), source };
+    match (&source.origin, format) {
+        (Origin::Gltf(document), Format::Gltf | Format::Glb) => {
+            let pairs: Vec<(usize, &Clip, &Clip)> =
+                source.clips.iter().zip(results).enumerate().map(|(i, (a, b))| (i, &**a, &**b)).collect();
+            let output = gltf::write_as(document, &pairs, &stem, form(format)).map_err(gltf_error)?;
+            Ok(Encoded::from(output))
+        }
+        (Origin::Bvh(document), Format::Bvh) if same_frames(&source.clips[0], &results[0]) => {
+            Ok(Encoded::alone(bvh::write(document, &source.clips[0], &results[0])))
+        }
+        (Origin::Csv(document), Format::Csv) if same_frames(&source.clips[0], &results[0]) => {
+            Ok(Encoded::alone(csv::write(document, &source.clips[0], &results[0])))
+        }
+        _ => {
+            let clip = results
+                .get(choice.unwrap_or(0))
+                .ok_or_else(|| WriteError::NoClip { path: source.path.clone() })?;
+            new_file(clip, format, &stem, target)
+        }
+    }
+}
+
+/// Copies what the result still refers to into the target's folder, where it is another one and does not have it yet:
+/// a figure should not lose its pictures for having been mended.
+fn take_along(source: &Source, target: &Path, encoded: &mut Encoded) {
+    for relative in &encoded.along {
+        let (from, to) = (source.path.with_file_name(relative), target.with_file_name(relative));
+        if to.exists() {
+            continue;
+        }
+        let text = match disk::read(&from).and_then(|bytes| disk::write(&to, &bytes)) {
+            Ok(()) => "the file refers to it, so it was copied along".to_owned(),
+            Err(error) => format!("the file refers to it, expected to copy it along, found: {error}"),
+        };
+        encoded.notes.push(Note::new(relative.as_str(), text));
+    }
+}
+
+fn form(format: Format) -> gltf::Form {
+    if format == Format::Glb { gltf::Form::Glb } else { gltf::Form::Text }
+}
+
+/// A new file of one clip.
+fn new_file(clip: &Clip, format: Format, stem: &str, target: &Path) -> Result<Encoded, WriteError> {
+    match format {
+        Format::Bvh => Ok(Encoded::alone(bvh::from_clip(clip))),
+        Format::Csv => Ok(Encoded::alone(csv::from_clip(clip))),
+        Format::Gltf | Format::Glb => {
+            let failed = |source| WriteError::Gltf { path: target.to_owned(), source };
+            let glb = gltf::from_clip(clip, stem).map_err(failed)?;
+            if format == Format::Glb {
+                return Ok(Encoded::from(glb));
+            }
+            let (document, _, _) =
+                gltf::read(glb.bytes, stem, &|_| Err("nothing lies beside it".to_owned())).map_err(failed)?;
+            let text = gltf::write_as(&document, &[], stem, gltf::Form::Text).map_err(failed)?;
+            Ok(Encoded { notes: [glb.notes, text.notes.clone()].concat(), ..Encoded::from(text) })
+        }
+    }
+}
+
+/// Whether a result still has its source's frames, so that it can be patched in.
+fn same_frames(source: &Clip, result: &Clip) -> bool {
+    source.grid == result.grid && source.joints.len() == result.joints.len()
+}
