@@ -137,6 +137,10 @@ impl Textures {
         for id in self.leaving.drain(..) {
             self.by_id.remove(&id);
         }
+        #[expect(
+            clippy::iter_over_hash_type,
+            reason = "each texture is on its own; the order changes nothing"
+        )]
         for (id, changes) in delta.set.drain() {
             let texture = self.by_id.entry(id).or_insert_with(Texture::new);
             for ImageDelta { image: ImageData::Color(image), options, pos } in changes {

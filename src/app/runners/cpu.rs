@@ -41,7 +41,8 @@ pub(super) fn run(
     screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>,
     progress: &Progress,
 ) -> Result<(), StartError> {
-    let event_loop = EventLoop::with_user_event().build().map_err(|_| start::no_event_loop())?;
+    let event_loop =
+        EventLoop::with_user_event().build().map_err(|_with_places_in_source| start::no_event_loop())?;
     let mut app = App {
         proxy: event_loop.create_proxy(),
         screen: Some(screen),
@@ -52,7 +53,7 @@ pub(super) fn run(
     let result = event_loop.run_app(&mut app);
     match app.failure {
         Some(failure) => Err(failure),
-        None => result.map_err(|_| refused("the display closed the connection")),
+        None => result.map_err(|_with_places_in_source| refused("the display closed the connection")),
     }
 }
 
@@ -169,7 +170,8 @@ impl Running {
         // Screen readers have to be told about the window before it is seen.
         let builder = fit_to_monitor(super::window(), event_loop).with_visible(false);
         let window = egui_winit::create_window(&ctx, event_loop, &builder);
-        let window = Arc::new(window.map_err(|_| refused("the display gives no window"))?);
+        let window =
+            Arc::new(window.map_err(|_with_places_in_source| refused("the display gives no window"))?);
         let no_surface = |_| refused("the display gives no surface to draw on");
         let context = softbuffer::Context::new(event_loop.owned_display_handle()).map_err(no_surface)?;
         let surface = softbuffer::Surface::new(&context, Arc::clone(&window)).map_err(no_surface)?;
@@ -220,6 +222,7 @@ impl Running {
                 return self.frame(event_loop);
             }
             WindowEvent::CloseRequested => self.on_close_request(event_loop),
+            WindowEvent::Destroyed => event_loop.exit(),
             WindowEvent::Occluded(is_occluded) => {
                 self.info.occluded = Some(*is_occluded);
                 self.repaint_at(Instant::now());
@@ -291,7 +294,9 @@ impl Running {
     /// Runs the screen and draws it.
     fn frame(&mut self, event_loop: &ActiveEventLoop) -> Result<(), StartError> {
         self.last_frame = Instant::now();
-        egui_winit::update_viewport_info(&mut self.info, &self.ctx, &self.window, false);
+        self.info.native_pixels_per_point = Some(self.window.scale_factor() as f32);
+        self.info.minimized = self.window.is_minimized();
+        self.info.focused = Some(self.window.has_focus());
         let new_input = self.input.take_egui_input(&self.window);
         let mut input = std::mem::take(&mut self.kept_input);
         input.append(new_input);
