@@ -20,7 +20,7 @@ fn main() -> Result<(), turnwright::app::StartError> {
     turnwright::app::run(move |ctx| Box::new(Probe::new(ctx, n_timed)))
 }
 
-struct Probe {
+pub struct Probe {
     picture: egui::TextureHandle,
     text: String,
     n_clicks: usize,
@@ -33,7 +33,7 @@ struct Probe {
 }
 
 impl Probe {
-    fn new(ctx: &egui::Context, n_timed: usize) -> Self {
+    pub fn new(ctx: &egui::Context, n_timed: usize) -> Self {
         let picture = ctx.load_texture("picture", picture(0), egui::TextureOptions::LINEAR);
         Self {
             picture,

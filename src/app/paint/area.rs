@@ -11,18 +11,45 @@ pub(super) const STEPS: i64 = 256;
 /// own numbers have no fractions of a pixel left there.
 const FAR: f32 = 2_097_152.0;
 
+/// Added before cutting off, so that this rounds to nearest below zero too.
+const ROUNDING: f64 = FAR as f64 * STEPS as f64;
+
 /// A corner of a shape, in steps of 1/256 pixel from the top left corner of the picture.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub(super) struct Corner {
-    pub(super) x: i64,
-    pub(super) y: i64,
+    x_steps: i32,
+    y_steps: i32,
 }
 
 impl Corner {
-    /// From egui's points. `None` where the shape has no place (not a number, or infinite).
-    pub(super) fn new(pos: Pos2, pixels_per_point: f32) -> Option<Self> {
-        let snap = |points: f32| ((points * pixels_per_point).clamp(-FAR, FAR) * STEPS as f32).round() as i64;
-        pos.is_finite().then(|| Self { x: snap(pos.x), y: snap(pos.y) })
+    /// Stands for a corner without a place (not a number, or infinite).
+    const NOWHERE: Self = Self { x_steps: i32::MIN, y_steps: i32::MIN };
+
+    /// From egui's points.
+    pub(super) fn new(pos: Pos2, pixels_per_point: f32) -> Self {
+        let snap = |points: f32| {
+            let steps = f64::from((points * pixels_per_point).clamp(-FAR, FAR)) * STEPS as f64;
+            // Both casts are exact; `round` would be a call on processors without an instruction for it.
+            ((steps + ROUNDING + 0.5) as i64 - ROUNDING as i64) as i32
+        };
+        if pos.is_finite() { Self { x_steps: snap(pos.x), y_steps: snap(pos.y) } } else { Self::NOWHERE }
+    }
+
+    pub(super) fn has_place(self) -> bool {
+        self != Self::NOWHERE
+    }
+
+    /// Whether one neighbour lies straight above or below, and the other straight to the left or right.
+    pub(super) fn is_beside(self, vertical: Self, horizontal: Self) -> bool {
+        self.x_steps == vertical.x_steps && self.y_steps == horizontal.y_steps
+    }
+
+    pub(super) fn x(self) -> i64 {
+        i64::from(self.x_steps)
+    }
+
+    pub(super) fn y(self) -> i64 {
+        i64::from(self.y_steps)
     }
 }
 
@@ -55,6 +82,17 @@ impl Area {
         }
     }
 
+    /// The pixels whose centres the box around some corners covers, its right and lower side included.
+    pub(super) fn around(corners: [Corner; 3]) -> Self {
+        let [a, b, c] = corners;
+        Self {
+            left: first_pixel(a.x().min(b.x()).min(c.x())),
+            top: first_pixel(a.y().min(b.y()).min(c.y())),
+            right: first_pixel(a.x().max(b.x()).max(c.x()) + 1),
+            bottom: first_pixel(a.y().max(b.y()).max(c.y()) + 1),
+        }
+    }
+
     pub(super) fn intersect(self, other: Self) -> Self {
         Self {
             left: self.left.max(other.left),
@@ -84,8 +122,17 @@ mod tests {
 
     #[test]
     fn corners_without_a_place_are_refused_and_far_ones_pulled_in() {
-        assert_eq!(Corner::new(Pos2::new(f32::NAN, 0.0), 1.0), None);
-        assert_eq!(Corner::new(Pos2::new(0.0, f32::INFINITY), 1.0), None);
-        assert_eq!(Corner::new(Pos2::new(1.5, -1e30), 2.0), Some(Corner { x: 768, y: -536_870_912 }));
+        assert!(!Corner::new(Pos2::new(f32::NAN, 0.0), 1.0).has_place());
+        assert!(!Corner::new(Pos2::new(0.0, f32::INFINITY), 1.0).has_place());
+        let far = Corner::new(Pos2::new(1.5, -1e30), 2.0);
+        assert_eq!((far.x(), far.y()), (768, -536_870_912));
+    }
+
+    #[test]
+    fn corners_go_to_the_nearest_step() {
+        let corner = Corner::new(Pos2::new(0.6 / 256.0, -0.6 / 256.0), 1.0);
+        assert_eq!((corner.x(), corner.y()), (1, -1));
+        let corner = Corner::new(Pos2::new(0.4 / 256.0, -0.4 / 256.0), 1.0);
+        assert_eq!((corner.x(), corner.y()), (0, 0));
     }
 }

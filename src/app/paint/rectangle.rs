@@ -26,32 +26,24 @@ pub(super) struct Rectangle {
 }
 
 impl Rectangle {
-    /// The rectangle that four vertices (left top, right top, left bottom, right bottom, as egui orders them) make, if
-    /// they make one: upright, of one tint, and with the image upright in it too.
-    pub(super) fn new(vertices: [Vertex; 4], pixels_per_point: f32) -> Option<Self> {
-        let [a, b, c, d] = vertices;
-        let is_upright =
-            |a: Pos2, b: Pos2, c: Pos2, d: Pos2| a.x == c.x && b.x == d.x && a.y == b.y && c.y == d.y;
+    /// The rectangle with these vertices at these corners (left top, right top, left bottom, right bottom, as egui
+    /// orders them), if it is of one tint and its image stands upright in it.
+    pub(super) fn new([a, b, c, d]: [Vertex; 4], [from, .., to]: [Corner; 4]) -> Option<Self> {
         let is_plain = a.color == b.color && a.color == c.color && a.color == d.color;
-        if !is_plain || !is_upright(a.pos, b.pos, c.pos, d.pos) || !is_upright(a.uv, b.uv, c.uv, d.uv) {
+        let is_upright = a.uv.x == c.uv.x && b.uv.x == d.uv.x && a.uv.y == b.uv.y && c.uv.y == d.uv.y;
+        if !is_plain || !is_upright {
             return None;
         }
-        Some(Self {
-            from: Corner::new(a.pos, pixels_per_point)?,
-            to: Corner::new(d.pos, pixels_per_point)?,
-            from_uv: a.uv,
-            to_uv: d.uv,
-            tint: a.color,
-        })
+        Some(Self { from, to, from_uv: a.uv, to_uv: d.uv, tint: a.color })
     }
 
     /// The pixels whose centres it covers.
     fn area(&self) -> Area {
         Area {
-            left: first_pixel(self.from.x.min(self.to.x)),
-            top: first_pixel(self.from.y.min(self.to.y)),
-            right: first_pixel(self.from.x.max(self.to.x)),
-            bottom: first_pixel(self.from.y.max(self.to.y)),
+            left: first_pixel(self.from.x().min(self.to.x())),
+            top: first_pixel(self.from.y().min(self.to.y())),
+            right: first_pixel(self.from.x().max(self.to.x())),
+            bottom: first_pixel(self.from.y().max(self.to.y())),
         }
     }
 
@@ -72,8 +64,8 @@ impl Rectangle {
             }
             return;
         }
-        let across = Axis::new(self.from.x, self.to.x, self.from_uv.x, self.to_uv.x, texture.width);
-        let down = Axis::new(self.from.y, self.to.y, self.from_uv.y, self.to_uv.y, texture.height);
+        let across = Axis::new(self.from.x(), self.to.x(), self.from_uv.x, self.to_uv.x, texture.width);
+        let down = Axis::new(self.from.y(), self.to.y(), self.from_uv.y, self.to_uv.y, texture.height);
         let start = (
             across.copy_start(area.left, area.right, texture.width),
             down.copy_start(area.top, area.bottom, texture.height),
