@@ -9,6 +9,9 @@
 //! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
 //! | `golden` | comparing a picture with the one a person accepted |
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
+//! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
+//! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
+//! | `gui_start` | the real program where no window can open |
 //! | `raster` | small pictures of one subject each |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
@@ -24,6 +27,12 @@ mod gltf;
 mod gltf_write;
 mod golden;
 mod planter;
+#[cfg(feature = "gui-tests")]
+mod gui_paint;
+#[cfg(feature = "gui-tests")]
+mod gui_screen;
+#[cfg(feature = "gui-tests")]
+mod gui_start;
 mod raster;
 mod rotor_checks;
 mod rotor_methods;

@@ -79,7 +79,9 @@ impl<'f> Frame<'f> {
                 clip,
                 first_corner: lists.corners.len(),
             };
-            lists.corners.extend(mesh.vertices.iter().map(|vertex| Corner::new(vertex.pos, pixels_per_point)));
+            lists
+                .corners
+                .extend(mesh.vertices.iter().map(|vertex| Corner::new(vertex.pos, pixels_per_point)));
             let corners = &lists.corners[layer.first_corner..];
             layer.sort(corners, &mut lists.bins, layers.len() as u32);
             layers.push(layer);
@@ -99,7 +101,8 @@ impl<'f> Frame<'f> {
             };
             if shape.is_rectangle {
                 let four = [vertex(0), vertex(1), vertex(2), vertex(5)];
-                let rectangle = Rectangle::new(four.map(|(vertex, _)| vertex), four.map(|(_, corner)| corner));
+                let rectangle =
+                    Rectangle::new(four.map(|(vertex, _)| vertex), four.map(|(_, corner)| corner));
                 if let Some(rectangle) = rectangle {
                     rectangle.draw(band, *clip, texture, &mut taps);
                     continue;
@@ -123,7 +126,10 @@ impl Layer<'_> {
             three.into_iter().all(Corner::has_place).then(|| Area::around(three))
         };
         let mut put = |shape: Shape, area: Option<Area>| {
-            let Some(area) = area.map(|area| area.intersect(self.clip)).filter(|area| !area.is_empty()) else { return };
+            let Some(area) = area.map(|area| area.intersect(self.clip)).filter(|area| !area.is_empty())
+            else {
+                return;
+            };
             for bin in &mut bins[area.top as usize / BAND_ROWS..=(area.bottom - 1) as usize / BAND_ROWS] {
                 bin.push(shape);
             }

@@ -4,6 +4,8 @@ use super::Canvas;
 use super::Painter;
 use super::pixel;
 use crate::app::Screen;
+use crate::raster::Color;
+use crate::raster::Image;
 use egui::Color32;
 use egui::Vec2;
 
@@ -12,17 +14,6 @@ const FRAME_SECS: f64 = 1.0 / 60.0;
 
 /// Frames after which a screen that never comes to rest is taken as it is.
 const MAX_FRAMES: usize = 60;
-
-/// A picture of the window.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct Picture {
-    /// Pixels in a row.
-    pub width: usize,
-    /// Rows.
-    pub height: usize,
-    /// Red, green, blue, alpha (always 255) of each pixel, row by row from the top.
-    pub rgba: Vec<u8>,
-}
 
 /// A window without a display: runs a screen frame by frame on a clock of its own and draws the last frame.
 pub struct Headless {
@@ -96,7 +87,7 @@ impl Headless {
     }
 
     /// Draws the last frame.
-    pub fn picture(&mut self) -> Picture {
+    pub fn picture(&mut self) -> Image {
         let primitives = self.ctx.tessellate(self.shapes.clone(), self.pixels_per_point);
         draw(&mut self.painter, self.size_points, self.pixels_per_point, &primitives, background(&self.ctx))
     }
@@ -107,7 +98,7 @@ pub fn picture_of(
     screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>,
     size_points: Vec2,
     pixels_per_point: f32,
-) -> Picture {
+) -> Image {
     let mut headless = Headless::new(size_points, pixels_per_point, super::default_threads());
     let mut screen = screen(headless.context());
     headless.settle(&mut *screen);
@@ -126,10 +117,14 @@ pub(super) fn draw(
     pixels_per_point: f32,
     primitives: &[egui::ClippedPrimitive],
     background: Color32,
-) -> Picture {
+) -> Image {
     let size = (size_points * pixels_per_point).round();
-    let (width, height) = (size.x as usize, size.y as usize);
+    let mut image = Image::new(size.x as usize, size.y as usize, Color::TRANSPARENT);
+    let (width, height) = (image.width(), image.height());
     let mut pixels = vec![0; width * height];
     painter.paint(Canvas { pixels: &mut pixels, width, height }, pixels_per_point, primitives, background);
-    Picture { width, height, rgba: pixels.into_iter().flat_map(pixel::unpack_rgba).collect() }
+    for (to, from) in image.pixels_mut().iter_mut().zip(pixels) {
+        *to = pixel::unpack_rgba(from);
+    }
+    image
 }

@@ -16,7 +16,6 @@ mod texture;
 mod triangle;
 
 pub use headless::Headless;
-pub use headless::Picture;
 pub(super) use headless::background;
 pub use headless::picture_of;
 #[cfg(feature = "gui-tests")]

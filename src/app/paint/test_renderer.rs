@@ -29,8 +29,8 @@ impl TestRenderer for CpuRenderer {
         let background = headless::background(ctx);
         let picture =
             headless::draw(&mut self.painter, size_points, output.pixels_per_point, &primitives, background);
-        RgbaImage::from_raw(picture.width as u32, picture.height as u32, picture.rgba).ok_or_else(|| {
-            format!("a picture of {}x{} has the wrong number of bytes", picture.width, picture.height)
-        })
+        let (width, height) = (picture.width(), picture.height());
+        RgbaImage::from_raw(width as u32, height as u32, picture.as_bytes().to_vec())
+            .ok_or_else(|| format!("a picture of {width} by {height} has the wrong number of bytes"))
     }
 }

@@ -67,7 +67,12 @@ impl Outline {
             doubled_area = -doubled_area;
         }
         let [a, b, c] = corners;
-        Some(Self { corners, vertices, doubled_area, sides: [Side::new(a, b), Side::new(b, c), Side::new(c, a)] })
+        Some(Self {
+            corners,
+            vertices,
+            doubled_area,
+            sides: [Side::new(a, b), Side::new(b, c), Side::new(c, a)],
+        })
     }
 
     /// The pixels of a row that lie inside, out of `left..right`.
@@ -191,7 +196,12 @@ impl Paint {
             let across = texels(&|vertex| vertex.uv.x, texture.width);
             let down = texels(&|vertex| vertex.uv.y, texture.height);
             let scale = across.across.hypot(down.across).max(across.down.hypot(down.down));
-            return Self::Image { across, down, tint: color_slopes(outline, u32::MAX), filter: texture.filter(scale) };
+            return Self::Image {
+                across,
+                down,
+                tint: color_slopes(outline, u32::MAX),
+                filter: texture.filter(scale),
+            };
         }
         let texel = if a.uv == WHITE_UV {
             white
@@ -272,7 +282,11 @@ mod tests {
             for quotient in [-(1 << 20), -2, -1, 0, 1, 2, 1 << 20] {
                 for rest in [-1, 0, 1] {
                     let dividend = quotient * divisor + rest;
-                    assert_eq!(floor_div(dividend, divisor), dividend.div_euclid(divisor), "{dividend} / {divisor}");
+                    assert_eq!(
+                        floor_div(dividend, divisor),
+                        dividend.div_euclid(divisor),
+                        "{dividend} / {divisor}"
+                    );
                 }
             }
         }
