@@ -20,7 +20,7 @@ fn main() -> Result<(), turnwright::app::StartError> {
     turnwright::app::run(move |ctx| Box::new(Probe::new(ctx, n_timed)))
 }
 
-pub struct Probe {
+struct Probe {
     picture: egui::TextureHandle,
     text: String,
     n_clicks: usize,
@@ -33,7 +33,7 @@ pub struct Probe {
 }
 
 impl Probe {
-    pub fn new(ctx: &egui::Context, n_timed: usize) -> Self {
+    fn new(ctx: &egui::Context, n_timed: usize) -> Self {
         let picture = ctx.load_texture("picture", picture(0), egui::TextureOptions::LINEAR);
         Self {
             picture,

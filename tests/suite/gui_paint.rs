@@ -318,7 +318,7 @@ fn the_picture_is_the_same_for_one_two_and_four_threads() {
 #[test]
 fn a_screen_can_be_drawn_without_a_display() {
     let picture = picture_of(|_| Box::new(Sampler), egui::vec2(300.0, 260.0), 1.0);
-    crate::golden::check("gui-sampler", &picture);
+    crate::golden::check("gui_sampler", &picture);
 }
 
 /// One letter, to see that glyphs land where they should.

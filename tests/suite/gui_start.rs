@@ -8,9 +8,9 @@ fn run(environment: &[(&str, &str)]) -> (Option<i32>, String) {
     for name in ["DISPLAY", "WAYLAND_DISPLAY", "WAYLAND_SOCKET", "TURNWRIGHT_RUNNER"] {
         command.env_remove(name);
     }
-    let output = command.envs(environment.iter().copied()).output().unwrap();
+    let output = command.envs(environment.iter().copied()).output().expect("the program runs");
     assert!(output.stdout.is_empty(), "data on stdout: {:?}", output.stdout);
-    (output.status.code(), String::from_utf8(output.stderr).unwrap())
+    (output.status.code(), String::from_utf8(output.stderr).expect("messages are UTF-8"))
 }
 
 /// Exit code 2 and one line that holds `expected`, without traces of a panic or of anybody's source files.
