@@ -5,6 +5,7 @@
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
+//! | `exchange` | files as a whole: every outside file opens, comes back, and goes into every other format |
 //! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
 //! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
 //! | `golden` | comparing a picture with the one a person accepted |
@@ -23,8 +24,10 @@
 mod bvh;
 mod csv;
 mod demo;
+mod exchange;
 mod gltf;
 mod gltf_write;
+
 mod golden;
 mod planter;
 #[cfg(feature = "gui-tests")]
