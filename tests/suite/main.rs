@@ -6,6 +6,8 @@
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
 //! | `exchange` | files as a whole: every outside file opens, comes back, and goes into every other format |
+//! | `gltf_broken` | glTF and GLB files, damaged: every error with place, expected and found; random damage without a panic |
+//! | `gltf_forms` | glTF and GLB files, rare but right: encodings, node forms, channels of other things |
 //! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
 //! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
 //! | `golden` | comparing a picture with the one a person accepted |
@@ -26,6 +28,8 @@ mod csv;
 mod demo;
 mod exchange;
 mod gltf;
+mod gltf_broken;
+mod gltf_forms;
 mod gltf_write;
 
 mod golden;

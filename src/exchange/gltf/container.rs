@@ -93,7 +93,8 @@ fn split_glb(bytes: &[u8]) -> Result<(Container, usize), GltfError> {
     while at < length {
         let place = || format!("GLB chunk {}", chunks.len());
         let left = length.saturating_sub(at);
-        let (Some(size), Some(kind)) = (word(bytes, at), word(bytes, at.saturating_add(4))) else {
+        let header = bytes.get(at..length).unwrap_or_default();
+        let (Some(size), Some(kind)) = (word(header, 0), word(header, 4)) else {
             return Err(GltfError::unlike(place(), "a chunk header of 8 bytes", format!("{left} bytes")));
         };
         let data_start = at.saturating_add(8);

@@ -45,10 +45,15 @@ impl<'a> At<'a> {
 
     /// The elements of a list; a missing list is empty.
     pub(super) fn list(&self, key: &str) -> Result<Vec<Self>, GltfError> {
-        let Some(list) = self.get(key) else { return Ok(Vec::new()) };
-        let Some(items) = list.value.as_array() else { return Err(list.unlike("a list")) };
-        let at = |(index, value)| Self { value, path: format!("{}[{index}]", list.path) };
+        let Some(items) = self.list_value(key)? else { return Ok(Vec::new()) };
+        let path = self.path_of(key);
+        let at = |(index, value)| Self { value, path: format!("{path}[{index}]") };
         Ok(items.iter().enumerate().map(at).collect())
+    }
+
+    fn list_value(&self, key: &str) -> Result<Option<&'a Vec<Value>>, GltfError> {
+        let Some(list) = self.get(key) else { return Ok(None) };
+        list.value.as_array().map(Some).ok_or_else(|| list.unlike("a list"))
     }
 
     /// How many elements a list has; a missing one has none.
@@ -89,7 +94,7 @@ impl<'a> At<'a> {
 
     /// This value as an index into the list `list` of `root`.
     pub(super) fn as_index(&self, list: &str, root: &At<'_>) -> Result<usize, GltfError> {
-        let count = root.count(list);
+        let count = root.list_value(list)?.map_or(0, Vec::len);
         let index = self.as_whole()?;
         if index < count {
             return Ok(index);
