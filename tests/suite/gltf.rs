@@ -1,6 +1,8 @@
 //! glTF and GLB, reading: every outside file opens with the counts of its sources page, and plays as the standard's
 //! formulas say.
 
+#![expect(clippy::unwrap_used, reason = "helpers of tests fail as tests do")]
+
 use std::path::{Path, PathBuf};
 
 use serde_json::Value;

@@ -1,6 +1,8 @@
 //! glTF and GLB, damaged: a small sound document is damaged in one place at a time, and the error says where, what was
 //! expected and what was found. Then many random damages, which may give any error but no panic.
 
+#![expect(clippy::unwrap_used, reason = "helpers of tests fail as tests do")]
+
 use base64::Engine;
 use serde_json::{Value, json};
 use turnwright::exchange::gltf::{self, GltfError};

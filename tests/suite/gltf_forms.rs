@@ -1,5 +1,7 @@
 //! glTF and GLB, rare but right: encodings, node forms and channels that the outside files do not show.
 
+#![expect(clippy::unwrap_used, reason = "helpers of tests fail as tests do")]
+
 use glam::DVec3;
 use serde_json::{Value, json};
 use turnwright::clip::Clip;

@@ -1,6 +1,9 @@
 //! glTF and GLB, writing: what was not changed stays byte for byte, what was changed is read back bit for bit, and
 //! clips of other formats become files that play the same.
 
+#![expect(clippy::unwrap_used, reason = "helpers of tests fail as tests do")]
+
+use std::fmt::Write as _;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
@@ -143,7 +146,7 @@ fn one_changed_key_changes_one_sampler_and_nothing_else() {
             let bytes = disk::read(&path.with_file_name("").join(file)).unwrap();
             disk::write(&folder.join(file), &bytes).unwrap();
         }
-        pairs += &format!("{}\t{}\n", path.display(), target.display());
+        writeln!(pairs, "{}\t{}", path.display(), target.display()).unwrap();
     }
     if !pairs.is_empty() {
         disk::write(&written_folder().join("pairs.tsv"), pairs.as_bytes()).unwrap();
@@ -344,7 +347,7 @@ fn every_outside_file_changes_its_form_and_plays_the_same() {
                 let bytes = disk::read(&path.with_file_name("").join(file)).unwrap();
                 disk::write(&folder.join(file), &bytes).unwrap();
             }
-            pairs += &format!("{}\t{}\n", path.display(), target.display());
+            writeln!(pairs, "{}\t{}", path.display(), target.display()).unwrap();
         }
     }
     if !pairs.is_empty() {
@@ -387,10 +390,7 @@ fn a_text_document_takes_its_new_buffer_along() {
     assert_eq!(output.bin.as_ref().unwrap().0, "My clip.bin");
     let raw = raw_of_uri(&output);
     assert_eq!(raw["buffers"][0]["uri"], "My%20clip.bin");
-    assert_eq!(
-        output.external,
-        document.external_files().into_iter().filter(|file| !file.ends_with(".bin")).collect::<Vec<_>>()
-    );
+    assert_eq!(output.external, Vec::<String>::new());
     let (_, again) = read_back(&output, path);
     assert_eq!(again[0], after);
 }
@@ -454,11 +454,11 @@ fn a_clip_of_another_format_becomes_a_file_that_plays_the_same() {
     for step in 0..400 {
         let time = f64::from(step) * 0.004_3;
         let (a, b) = (clip.world_at(time), again[0].world_at(time));
-        for joint in 0..4 {
+        for (joint, own) in a.iter().enumerate() {
             let label = clip.skeleton.label(joint);
             let other = document.skeleton().find(label).unwrap();
-            assert_close!(b[other].rotation, a[joint].rotation, 2e-5, "{label} at {time}");
-            assert_close!(b[other].position(), a[joint].position(), 2e-3, "{label} at {time}");
+            assert_close!(b[other].rotation, own.rotation, 2e-5, "{label} at {time}");
+            assert_close!(b[other].position(), own.position(), 2e-3, "{label} at {time}");
         }
     }
     // Unit, of one sign, at most 120 degrees apart, times rising.
@@ -488,7 +488,7 @@ fn a_clip_of_another_format_becomes_a_file_that_plays_the_same() {
 #[test]
 fn a_clip_without_joints_or_motion_becomes_a_valid_file_too() {
     let mut clip = arm();
-    clip.joints = vec![Arc::new(JointTracks::default()); 4];
+    clip.joints = (0..4).map(|_| Arc::default()).collect();
     let output = gltf::from_clip(&clip, "still").unwrap();
     let (document, clips, _) = gltf::read(&output.bytes, "still.glb", &no_files).unwrap();
     assert_eq!((document.skeleton().listed().count(), clips.len()), (4, 0));
