@@ -33,13 +33,13 @@ mod gltf_forms;
 mod gltf_write;
 
 mod golden;
-mod planter;
 #[cfg(feature = "gui-tests")]
 mod gui_paint;
 #[cfg(feature = "gui-tests")]
 mod gui_screen;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
+mod planter;
 mod raster;
 mod rotor_checks;
 mod rotor_methods;
