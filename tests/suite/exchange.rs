@@ -35,8 +35,8 @@ fn opened(path: &Path) -> Source {
 }
 
 /// The largest turn in degrees, and the largest distance as a share of the figure, between two clips' joints of the same
-/// label, in the scene, at frames and between them.
-fn difference(a: &Clip, b: &Clip) -> (f64, f64) {
+/// label, in the scene, at up to 41 frames.
+fn difference(a: &Clip, b: &Clip, by_frame: bool) -> (f64, f64) {
     let shared: Vec<(usize, usize)> = a
         .skeleton
         .listed()
@@ -45,23 +45,23 @@ fn difference(a: &Clip, b: &Clip) -> (f64, f64) {
     assert_eq!(shared.len(), a.skeleton.listed().count(), "every joint is found again");
     let count = a.grid.count();
     let steps = count.min(40);
+    let (rest_a, rest_b) =
+        (a.skeleton.world(&a.skeleton.rest_pose()), b.skeleton.world(&b.skeleton.rest_pose()));
     let (mut turn, mut place) = (0.0_f64, 0.0_f64);
     for step in 0..=steps {
-        let time = a.grid.time((count - 1) * step / steps.max(1));
-        let (world_a, world_b) = (a.world_at(time), b.world_at(time));
+        let frame = (count - 1) * step / steps.max(1);
+        let time_b = if by_frame { b.grid.time(frame) } else { a.grid.time(frame) };
+        let (world_a, world_b) = (a.world_at(a.grid.time(frame)), b.world_at(time_b));
         let size = shared.iter().map(|&(joint, _)| world_a[joint].position().length()).fold(1e-9, f64::max);
         for &(own, others) in &shared {
-            turn = turn.max(turn_of_axes(&world_a[own].scene_from_joint, &world_b[others].scene_from_joint));
+            // BVH joints stand parallel to the world at rest: what is kept is the turn away from rest.
+            let away_a = world_a[own].rotation * rest_a[own].rotation.reverse();
+            let away_b = world_b[others].rotation * rest_b[others].rotation.reverse();
+            turn = turn.max(away_a.turn_to(away_b));
             place = place.max(world_a[own].position().distance(world_b[others].position()) / size);
         }
     }
     (turn.to_degrees(), place)
-}
-
-/// How far `b` turns from `a`; scales do not matter.
-fn turn_of_axes(a: &glam::DAffine3, b: &glam::DAffine3) -> f64 {
-    use turnwright::skeleton::Transform;
-    Transform::from_affine(a).rotation.turn_to(Transform::from_affine(b).rotation)
 }
 
 #[test]
@@ -113,7 +113,8 @@ fn poses_survive_the_way_into_every_other_format() {
     for path in all_files() {
         let source = opened(&path);
         let Some(clip) = source.clips.first() else { continue };
-        for format in Format::ALL {
+        // Its own format gives the very file back, as another test shows.
+        for format in Format::ALL.into_iter().filter(|&format| format != source.format) {
             let target = Path::new("written").with_extension(format.extension());
             let encoded = encode(&source, &source.clips, Some(0), &target).unwrap();
             let folder = tempfile::tempdir().unwrap();
@@ -130,7 +131,8 @@ fn poses_survive_the_way_into_every_other_format() {
             if uneven && encoded.notes.iter().any(told) {
                 continue;
             }
-            let (turn, place) = difference(clip, back);
+            // Rows whose times are rounded become frames that are evenly apart.
+            let (turn, place) = difference(clip, back, format == Format::Bvh);
             // BVH holds six decimals, glTF 32-bit floats; animated or mirrored scales are told as lost.
             let scaled = clip.joints.iter().any(|tracks| tracks.scale.is_some());
             if !(scaled && format == Format::Bvh) {
