@@ -13,6 +13,7 @@ pub use start::StartError;
 
 use crate::app::Screen;
 use start::Choice;
+use start::Progress;
 
 /// Opens a window, shows the screen in it, and returns when the window is closed.
 ///
@@ -24,16 +25,19 @@ use start::Choice;
 pub fn run(screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>) -> Result<(), StartError> {
     let choice = Choice::from_environment()?;
     start::need_display()?;
-    start::guard(|progress| match choice {
-        Choice::Cpu => cpu::run(screen, progress),
-        Choice::Gl => glow::run(screen, progress, glow::Software::Accept),
-        Choice::Best if !device::is_present() => cpu::run(screen, progress),
-        Choice::Best => match glow::run(screen, progress, glow::Software::Refuse) {
-            // One process can have one event loop only, and a failed driver leaves much behind.
-            Err(_) if !progress.has_screen() => start::restart_with_cpu(),
-            result => result,
-        },
-    })
+    let progress = Progress::default();
+    match choice {
+        Choice::Cpu => start::guard(&progress, || cpu::run(screen, &progress)),
+        Choice::Gl => start::guard(&progress, || glow::run(screen, &progress, glow::Software::Accept)),
+        Choice::Best if !device::is_present() => start::guard(&progress, || cpu::run(screen, &progress)),
+        Choice::Best => {
+            match start::guard(&progress, || glow::run(screen, &progress, glow::Software::Refuse)) {
+                // One process can have one event loop only, and a failed driver leaves much behind.
+                Err(_) if !progress.has_screen() => start::restart_with_cpu(),
+                result => result,
+            }
+        }
+    }
 }
 
 /// The window before its first frame, the same for both runners.

@@ -1,6 +1,5 @@
 //! What can go wrong before there is a window, said in plain words.
 
-use std::cell::Cell;
 use std::panic::AssertUnwindSafe;
 use std::sync::Arc;
 use std::sync::atomic::AtomicBool;
@@ -96,37 +95,40 @@ pub(super) fn no_event_loop() -> StartError {
 }
 
 /// How far the start has come.
-#[derive(Debug)]
+#[derive(Debug, Default)]
 pub(super) struct Progress {
-    has_screen: Cell<bool>,
-    is_quiet: Arc<AtomicBool>,
+    /// Shared with the panic hook.
+    has_screen: Arc<AtomicBool>,
 }
 
 impl Progress {
     /// The window exists and the screen is about to be made: from here on a panic is ours.
     pub(super) fn screen_begins(&self) {
-        self.has_screen.set(true);
-        self.is_quiet.store(false, Ordering::Relaxed);
+        self.has_screen.store(true, Ordering::Relaxed);
     }
 
     pub(super) fn has_screen(&self) -> bool {
-        self.has_screen.get()
+        self.has_screen.load(Ordering::Relaxed)
     }
 }
 
 /// Runs `start`; a panic before the screen exists becomes an error, without a word on stderr. winit panics when a system
 /// library is missing.
-pub(super) fn guard(start: impl FnOnce(&Progress) -> Result<(), StartError>) -> Result<(), StartError> {
-    let progress = Progress { has_screen: Cell::new(false), is_quiet: Arc::new(AtomicBool::new(true)) };
-    let is_quiet = Arc::clone(&progress.is_quiet);
+pub(super) fn guard(
+    progress: &Progress,
+    start: impl FnOnce() -> Result<(), StartError>,
+) -> Result<(), StartError> {
+    let has_screen = Arc::clone(&progress.has_screen);
+    let is_over = Arc::new(AtomicBool::new(false));
+    let is_over_for_hook = Arc::clone(&is_over);
     let usual_hook = std::panic::take_hook();
     std::panic::set_hook(Box::new(move |info| {
-        if !is_quiet.load(Ordering::Relaxed) {
+        if has_screen.load(Ordering::Relaxed) || is_over_for_hook.load(Ordering::Relaxed) {
             usual_hook(info);
         }
     }));
-    let result = std::panic::catch_unwind(AssertUnwindSafe(|| start(&progress)));
-    progress.is_quiet.store(false, Ordering::Relaxed);
+    let result = std::panic::catch_unwind(AssertUnwindSafe(start));
+    is_over.store(true, Ordering::Relaxed);
     match result {
         Ok(result) => result,
         Err(payload) if progress.has_screen() => std::panic::resume_unwind(payload),
@@ -199,10 +201,12 @@ mod tests {
 
     #[test]
     fn a_panic_before_the_screen_is_an_error_and_after_it_stays_a_panic() {
-        let error = guard(|_| panic!("Library libX.so could not be loaded.")).unwrap_err();
+        let error =
+            guard(&Progress::default(), || panic!("Library libX.so could not be loaded.")).unwrap_err();
         assert_eq!(error, StartError::MissingLibrary { library: "libX.so".to_owned() });
         let late = std::panic::catch_unwind(|| {
-            guard(|progress| {
+            let progress = Progress::default();
+            guard(&progress, || {
                 progress.screen_begins();
                 std::panic::resume_unwind(Box::new("late"))
             })
