@@ -2,9 +2,9 @@
 
 use std::f64::consts::TAU;
 
-use glam::{DVec3, Vec2};
+use glam::{DVec2, DVec3, Vec2};
 
-use crate::raster::camera::View;
+use crate::raster::camera::{Ray, View};
 use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke};
 use crate::raster::palette::{Color, Theme};
 use crate::raster::text::{Align, TextStyle, draw_text_centered, text_width};
@@ -36,6 +36,25 @@ impl PlaneDisc {
     /// The point on the rim at an angle (radians) from `u`, world.
     pub fn rim(&self, angle_rad: f64) -> DVec3 {
         self.center + (self.u * angle_rad.cos() + self.v * angle_rad.sin()) * self.radius
+    }
+
+    /// The angle (radians from `u`, −π..=π) of the place in the disc's plane that a ray meets; nothing when it runs
+    /// beside the plane or away from it.
+    pub fn angle_under(&self, ray: &Ray) -> Option<f64> {
+        let met = ray.meet_plane(self.center, self.u.cross(self.v))? - self.center;
+        Some(met.dot(self.v).atan2(met.dot(self.u)))
+    }
+
+    /// How far the disc's rim is from a pixel, in pixels: for taking hold of it.
+    pub fn rim_distance(&self, view: &View, pixel: DVec2) -> Option<f64> {
+        let rim = |i: u32| view.project(self.rim(TAU * f64::from(i) / 72.0)).map(|seen| seen.pixel);
+        let distance_to_piece = |i: u32| {
+            let (a, b) = (rim(i)?, rim(i + 1)?);
+            let along = (pixel - a).dot(b - a) / (b - a).length_squared();
+            let along = if along.is_finite() { along.clamp(0.0, 1.0) } else { 0.0 };
+            Some(pixel.distance(a.lerp(b, along)))
+        };
+        (0..72).filter_map(distance_to_piece).min_by(f64::total_cmp)
     }
 }
 
@@ -126,4 +145,37 @@ pub(super) fn draw_plate(canvas: &mut Canvas, text: &str, at: Vec2, theme: &Them
     canvas.flat_polygon(&outline, theme.panel.with_alpha(0.88));
     let centered = style.aligned(Align::Center);
     draw_text_centered(&mut canvas.image, text, at, &centered);
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::raster::camera::Camera;
+
+    #[test]
+    fn a_ray_through_the_rim_finds_its_angle_and_the_rim_is_near_its_pixel() {
+        let camera = Camera { target: DVec3::ZERO, yaw_rad: 0.7, pitch_rad: 0.3, ..Camera::default() };
+        let view = camera.view(400, 300);
+        let disc = PlaneDisc {
+            center: DVec3::new(0.1, 0.2, 0.0),
+            u: DVec3::Y,
+            v: DVec3::Z,
+            radius: 0.5,
+            from_rad: 0.0,
+            to_rad: 0.0,
+            color: Color::rgb(0),
+            name: String::new(),
+            angle_text: String::new(),
+        };
+        for angle in [-3.0, -1.2, 0.0, 0.4, 2.9] {
+            let pixel = view.project(disc.rim(angle)).unwrap().pixel;
+            let found = disc.angle_under(&view.ray(pixel)).unwrap();
+            assert!((found - angle).abs() < 1e-9, "{found}");
+            assert!(disc.rim_distance(&view, pixel).unwrap() < 0.3);
+        }
+        let center = view.project(disc.center).unwrap().pixel;
+        assert!(disc.rim_distance(&view, center).unwrap() > 10.0);
+        let away = Ray { origin: DVec3::X, direction: DVec3::X };
+        assert_eq!(disc.angle_under(&away), None);
+    }
 }

@@ -122,15 +122,22 @@ impl Surface {
 /// The tone that stands for a brightness of 1.
 const TONES_AT_ONE: f32 = 225.0;
 
-/// A colour at 256 brightnesses.
-struct Tones([[u8; 3]; 256]);
+/// A colour at 256 brightnesses, opaque.
+struct Tones([[u8; 4]; 256]);
 
 impl Tones {
     fn new(color: Color) -> Self {
         let scale = |channel: u8, tone: usize| {
             (f32::from(channel) * tone as f32 * (1.0 / TONES_AT_ONE) + 0.5).min(255.0) as u8
         };
-        Self(std::array::from_fn(|tone| [scale(color.r, tone), scale(color.g, tone), scale(color.b, tone)]))
+        Self(std::array::from_fn(|tone| {
+            [scale(color.r, tone), scale(color.g, tone), scale(color.b, tone), 255]
+        }))
+    }
+
+    #[inline]
+    fn at(&self, tone: u32) -> [u8; 4] {
+        self.0[(tone & 0xFF) as usize]
     }
 }
 
@@ -166,54 +173,24 @@ impl Canvas {
         let (pixels, depth) = (self.image.pixels_mut(), &mut self.depth[..]);
         let frame = cone.shape.frame();
         let surface = Surface::new(cone, frame);
-        let tones = Tones::new(style.color);
-        let mark = Mark::new(cone, style);
-        let halo = style.halo.max(0.5);
-        cone.shape.rows(&frame, width, height, halo, |row, columns, first| {
+        let ink = Ink::new(cone, style, frame);
+        cone.shape.rows(&frame, width, height, ink.halo, |row, columns, first| {
             let span = row * width + columns.start..row * width + columns.end;
             let chunks = pixels[span.clone()].chunks_mut(LANES).zip(depth[span].chunks_mut(LANES));
             for (chunk, (pixels, depths)) in chunks.enumerate() {
                 let start = Vec2::new(first.x + (chunk * LANES) as f32, first.y);
                 let lanes = surface.lanes(start);
-                for (lane, (pixel, standing)) in pixels.iter_mut().zip(depths).enumerate() {
-                    let alpha = lanes.alpha[lane];
-                    if alpha < 255 {
-                        // Beside the limb and under its soft rim: darken what stands well behind it.
-                        let near = ((halo - lanes.distance[lane]) / halo).min(1.0);
-                        if near > 0.0 && *standing != FAR && *standing < lanes.behind[lane] {
-                            mix_pixel(pixel, [0, 0, 0], (near * 130.0) as u32);
-                        }
-                        if alpha == 0 {
-                            continue;
+                let pixels = pixels.iter_mut().zip(depths).enumerate();
+                if ink.is_plain(start, &lanes) {
+                    for (lane, (pixel, standing)) in pixels {
+                        if lanes.key[lane] > *standing {
+                            *pixel = ink.tones.at(lanes.tone[lane]);
+                            *standing = lanes.key[lane];
                         }
                     }
-                    let key = lanes.key[lane];
-                    if key <= *standing {
-                        continue;
-                    }
-                    let tone = lanes.tone[lane] as usize;
-                    let mut rgb = tones.0[tone.min(255)];
-                    if let Some(mark) = &mark {
-                        let along = frame.along(start + Vec2::new(lane as f32, 0.0));
-                        let inside = (mark.half + 0.5 - (along - mark.at).abs()).clamp(0.0, 1.0);
-                        if inside > 0.0 {
-                            rgb = mix_rgb(rgb, mark.tones.0[tone.min(255)], inside);
-                        }
-                    }
-                    if let Some((ring, color)) = style.ring {
-                        let inside = (lanes.distance[lane] + ring + 0.5).clamp(0.0, 1.0);
-                        if inside > 0.0 {
-                            rgb = mix_rgb(rgb, [color.r, color.g, color.b], inside);
-                        }
-                    }
-                    if alpha == 255 {
-                        *pixel = [rgb[0], rgb[1], rgb[2], 255];
-                        *standing = key;
-                    } else {
-                        mix_pixel(pixel, rgb, alpha);
-                        if alpha >= 128 {
-                            *standing = key;
-                        }
+                } else {
+                    for (lane, (pixel, standing)) in pixels {
+                        ink.draw(start, &lanes, lane, pixel, standing);
                     }
                 }
             }
@@ -221,10 +198,80 @@ impl Canvas {
     }
 }
 
-#[inline]
-fn mix_rgb(from: [u8; 3], to: [u8; 3], weight: f32) -> [u8; 3] {
-    let mix = |a: u8, b: u8| (f32::from(a) + (f32::from(b) - f32::from(a)) * weight + 0.5) as u8;
-    [mix(from[0], to[0]), mix(from[1], to[1]), mix(from[2], to[2])]
+/// A limb's looks, ready for its pixels.
+struct Ink {
+    frame: ConeFrame,
+    tones: Tones,
+    mark: Option<Mark>,
+    ring: Option<(f32, Color)>,
+    halo: f32,
+    /// Deeper inside than this, pixels, there is neither soft rim nor ring.
+    rim: f32,
+}
+
+impl Ink {
+    fn new(cone: &SolidCone, style: &SolidStyle, frame: ConeFrame) -> Self {
+        Self {
+            frame,
+            tones: Tones::new(style.color),
+            mark: Mark::new(cone, style),
+            ring: style.ring,
+            halo: style.halo.max(0.5),
+            rim: 0.5 + style.ring.map_or(0.0, |(width, _)| width),
+        }
+    }
+
+    /// Whether all pixels from `start` lie well inside and clear of the mark: most do, and need no further thought.
+    #[inline]
+    fn is_plain(&self, start: Vec2, lanes: &Lanes) -> bool {
+        let outermost = lanes.distance.iter().fold(f32::NEG_INFINITY, |most, &distance| most.max(distance));
+        outermost < -self.rim
+            && self.mark.as_ref().is_none_or(|mark| {
+                let along = self.frame.along(start + Vec2::new(LANES as f32 / 2.0, 0.0));
+                (along - mark.at).abs() > mark.half + 0.5 + LANES as f32 / 2.0
+            })
+    }
+
+    /// Draws one pixel, whatever it meets there.
+    #[inline]
+    fn draw(&self, start: Vec2, lanes: &Lanes, lane: usize, pixel: &mut [u8; 4], standing: &mut f32) {
+        let alpha = lanes.alpha[lane];
+        if alpha < 255 {
+            // Beside the limb and under its soft rim: darken what stands well behind it.
+            let near = ((self.halo - lanes.distance[lane]) / self.halo).min(1.0);
+            if near > 0.0 && *standing != FAR && *standing < lanes.behind[lane] {
+                mix_pixel(pixel, [0, 0, 0], (near * 130.0) as u32);
+            }
+        }
+        let key = lanes.key[lane];
+        if alpha == 0 || key <= *standing {
+            return;
+        }
+        let mut color = self.tones.at(lanes.tone[lane]);
+        if let Some(mark) = &self.mark {
+            let along = self.frame.along(start + Vec2::new(lane as f32, 0.0));
+            let inside = (mark.half + 0.5 - (along - mark.at).abs()).clamp(0.0, 1.0);
+            if inside > 0.0 {
+                let [r, g, b, _] = mark.tones.at(lanes.tone[lane]);
+                mix_pixel(&mut color, [r, g, b], to_byte(inside * 255.0));
+            }
+        }
+        if let Some((ring, ring_color)) = self.ring {
+            let inside = (lanes.distance[lane] + ring + 0.5).clamp(0.0, 1.0);
+            if inside > 0.0 {
+                mix_pixel(&mut color, [ring_color.r, ring_color.g, ring_color.b], to_byte(inside * 255.0));
+            }
+        }
+        if alpha == 255 {
+            *pixel = color;
+        } else {
+            let [r, g, b, _] = color;
+            mix_pixel(pixel, [r, g, b], alpha);
+        }
+        if alpha >= 128 {
+            *standing = key;
+        }
+    }
 }
 
 #[cfg(test)]
