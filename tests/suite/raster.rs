@@ -1,15 +1,19 @@
 //! Pictures of one subject each, small, in the theme where they are harder to read.
 
 use std::f64::consts::{FRAC_PI_2, PI};
+use std::sync::Arc;
 
 use glam::{DVec3, Vec2};
+use turnwright::clip::{Clip, FrameGrid, JointTracks, RotationTrack};
 use turnwright::raster::{
-    Align, Area, Bounds, Camera, Canvas, Curve, Figure, FigureLimb, FigureStyle, Floor, Girth, Image, Label,
-    Lens, MapRow, Moment, PlaneDisc, Plot, ReachCone, SceneView, SnagMark, StraightView, StripStyle,
-    TextStyle, Theme, Tile, TipPath, TurnMap, ValueUnit, chart_canvas, compose, contact_strip, draw_plot,
-    draw_text, draw_turn_map, limbs_of_skeleton, render,
+    Align, Area, Bounds, Camera, Canvas, ClipPage, Curve, Figure, FigureLimb, FigureStyle, Floor, Girth,
+    Image, Label, Lens, MapRow, Moment, PlaneDisc, Plot, ReachCone, SceneView, SnagMark, StraightView,
+    StripStyle, TextStyle, Theme, Tile, TipPath, TurnMap, ValueUnit, chart_canvas, clip_page, compose,
+    contact_strip, draw_plot, draw_text, draw_turn_map, limbs_of_skeleton, render,
 };
+use turnwright::rotor::{Bivector, Rotor};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
+use turnwright::snag::{Remedy, Snag, SnagKind};
 
 use crate::golden;
 
@@ -334,6 +338,60 @@ fn a_contact_strip_sets_times_side_by_side() {
     };
     let tiles: Vec<Tile> = contact_strip(&moments, &style);
     golden::check("strip", &compose("Deckhand", &tiles, 3, &theme, 1.0));
+}
+
+/// The biped's right arm swings from the shoulder; with `fault`, three frames of the elbow are half a turn off.
+fn swinging_clip(fault: bool) -> Clip {
+    let skeleton = Arc::new(biped(1.8, 0.2));
+    let grid = FrameGrid::even(30.0, 2.0);
+    let mut joints = vec![Arc::new(JointTracks::default()); skeleton.len()];
+    let [shoulder, elbow] = [10, 11];
+    for (joint, reach_rad) in [(shoulder, 0.9), (elbow, 0.5)] {
+        let key = |frame: usize| {
+            let swing = reach_rad * (frame as f64 / 60.0 * 2.0 * PI).sin();
+            let is_off = fault && joint == elbow && (40..43).contains(&frame);
+            let off = if is_off { PI } else { 0.0 };
+            Rotor::from_plane_angles(Bivector { yz: off, zx: 0.0, xy: 0.0 })
+                * Rotor::from_plane_angles(Bivector { yz: 0.0, zx: 0.0, xy: -swing })
+        };
+        let keys: Vec<Rotor> = (0..grid.count()).map(key).collect();
+        let track = RotationTrack::from_rotors(grid.times.clone(), keys);
+        joints[joint] = Arc::new(JointTracks { rotation: Some(track), ..JointTracks::default() });
+    }
+    Clip { name: "swing".to_owned(), skeleton, joints, grid, duration_secs: 2.0 }
+}
+
+#[test]
+fn a_clip_on_one_page_shows_poses_rates_and_snags() {
+    let (before, after) = (swinging_clip(true), swinging_clip(false));
+    let snag = Snag {
+        kind: SnagKind::HalfTurn,
+        joint: 11,
+        first_key: 40,
+        last_key: 42,
+        first_frame: 40,
+        last_frame: 42,
+        first_secs: 40.0 / 30.0,
+        last_secs: 42.0 / 30.0,
+        size_rad: PI,
+        confidence: 1.0,
+        remedy: Remedy::Ask,
+        safe: true,
+        text: String::new(),
+    };
+    let page = ClipPage {
+        title: "swing, mended".to_owned(),
+        clip: &after,
+        before: Some(&before),
+        snags: &[snag],
+        times_secs: vec![0.5, 41.0 / 30.0, 1.8],
+        width: 400,
+        height: 420,
+        scale: 1.0,
+        theme: Theme::DARK,
+        camera: Camera::default(),
+    };
+    golden::check("page", &clip_page(&page));
 }
 
 #[test]
