@@ -8,21 +8,34 @@ use crate::skeleton::JointKind;
 
 use super::Note;
 
-/// Tells that a format without sizes lost some.
+/// Sizes nearer than this to each other are the same: what a file's 32 bits and a few products leave.
+const SAME_SIZE: f64 = 1e-4;
+
+/// Tells that a format without any sizes lost some.
 pub(super) fn sizes(clip: &Clip, notes: &mut Vec<Note>) {
-    let skeleton = &clip.skeleton;
     let is_sized = |joint: usize| {
-        let rest = skeleton.joints()[joint].rest.scale;
-        let keys = clip.joints[joint].scale.iter().flat_map(|track| track.keys.iter());
-        keys.chain([&rest]).any(|size| size.distance(DVec3::ONE) > 1e-4)
+        let own = &clip.skeleton.joints()[joint];
+        let is_one = own.rest.scale.distance(DVec3::ONE) <= SAME_SIZE;
+        own.kind == JointKind::Joint && (!is_one || changes_size(clip, joint))
     };
-    let mut joints = 0..skeleton.len();
-    if let Some(joint) =
-        joints.find(|&joint| skeleton.joints()[joint].kind == JointKind::Joint && is_sized(joint))
-    {
+    if let Some(joint) = (0..clip.skeleton.len()).find(|&joint| is_sized(joint)) {
         let text = "expected no sizes, as the format has none, found some: left out";
-        notes.push(Note::new(format!("joint {}", skeleton.label(joint)), text));
+        notes.push(Note::new(format!("joint {}", clip.skeleton.label(joint)), text));
     }
+}
+
+/// Tells that a format with sizes at rest alone lost some that change.
+pub(super) fn changing_sizes(clip: &Clip, notes: &mut Vec<Note>) {
+    if let Some(joint) = (0..clip.skeleton.len()).find(|&joint| changes_size(clip, joint)) {
+        let text = "expected no sizes that change, as the format has none, found some: left out";
+        notes.push(Note::new(format!("joint {}", clip.skeleton.label(joint)), text));
+    }
+}
+
+fn changes_size(clip: &Clip, joint: usize) -> bool {
+    let rest = clip.skeleton.joints()[joint].rest.scale;
+    let track = clip.joints[joint].scale.as_ref();
+    track.is_some_and(|track| track.keys.iter().any(|size| size.distance(rest) > SAME_SIZE * rest.length()))
 }
 
 /// How far the frames, with the short way between them, are from the clip's own keys and the middles between them.

@@ -5,6 +5,7 @@
 mod address;
 pub mod bvh;
 pub mod csv;
+mod decimal;
 pub mod disk;
 mod export;
 pub mod gltf;

@@ -321,3 +321,28 @@ fn carriers_turned_rests_and_sliding_joints_are_taken_in() {
     assert!(tip.distance(tip_again) < 1e-5, "{tip} {tip_again}");
     assert_ne!(own[4].scene_from_joint, DAffine3::IDENTITY);
 }
+
+#[test]
+fn every_gltf_clip_becomes_bvh_with_every_joint_where_it_was() {
+    let mut clips_seen = 0;
+    for path in crate::gltf::outside_files() {
+        for clip in crate::gltf::open(&path).1 {
+            let place = format!("{} {}", path.display(), clip.name);
+            let (made, _) = bvh::from_clip(&clip);
+            let (_, again, notes) =
+                bvh::read(&made, "made").unwrap_or_else(|error| panic!("{place}: {error}"));
+            assert_eq!(notes, [], "{place}");
+            assert_eq!(again.grid, clip.grid, "{place}");
+            assert_eq!(again.skeleton.len(), clip.skeleton.listed().count(), "{place}");
+            let (far, turn) = apart(&clip, &again);
+            let rest = again.skeleton.world(&again.skeleton.rest_pose());
+            let reach =
+                rest.iter().map(|own| own.position().distance(rest[0].position())).fold(1.0, f64::max);
+            // Six decimals a joint, in a chain.
+            assert!(far < 1e-5 * reach, "{place}: {far}, reach {reach}");
+            assert!(turn.to_degrees() < 1e-4, "{place}: {turn}");
+            clips_seen += 1;
+        }
+    }
+    assert!(clips_seen == 0 || clips_seen > 40, "{clips_seen} clips");
+}

@@ -2,6 +2,8 @@
 
 #![deny(clippy::arithmetic_side_effects, clippy::indexing_slicing)]
 
+use crate::exchange::decimal::short;
+
 use super::error::{BvhError, BvhErrorKind};
 
 /// Walks through the text. Never leaves it, whatever is asked.
@@ -78,9 +80,7 @@ impl<'a> Scanner<'a> {
 
     /// Past blanks and line ends.
     pub(super) fn skip_blanks(&mut self) {
-        while self.peek().is_some_and(is_blank) {
-            self.advance(1);
-        }
+        self.take_while(is_blank);
     }
 
     /// Past blanks on this line.
@@ -162,6 +162,13 @@ impl<'a> Scanner<'a> {
     /// Sign, digits, mark, digits, exponent.
     fn plain_number(&mut self) -> Option<f64> {
         let start = self.pos;
+        if let Some(found) = short(self.bytes.get(start..)?) {
+            self.advance(found.length);
+            if found.has_point {
+                self.oddities.points.add(start);
+            }
+            return Some(found.value);
+        }
         if matches!(self.peek(), Some(b'+' | b'-')) {
             self.advance(1);
         }

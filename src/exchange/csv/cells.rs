@@ -4,6 +4,8 @@
 
 use std::borrow::Cow;
 
+use crate::exchange::decimal::short;
+
 use super::error::CsvError;
 
 /// The content of a cell: without the quotes and blanks around it.
@@ -222,6 +224,9 @@ pub(super) fn number(bytes: &[u8], cell: Cell) -> Option<f64> {
     let raw = bytes.get(cell.start..cell.end)?;
     if raw.is_empty() {
         return Some(f64::NAN);
+    }
+    if let Some(found) = short(raw).filter(|found| found.length == raw.len()) {
+        return Some(found.value);
     }
     let value: f64 = std::str::from_utf8(raw).ok()?.parse().ok()?;
     Some(if value.is_finite() { value } else { f64::NAN })

@@ -66,10 +66,7 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
         }
         bytes.push(b'\n');
     }
-    if let Some(joint) = (0..skeleton.len()).find(|&joint| clip.joints[joint].scale.is_some()) {
-        let text = "expected no animated sizes, as CSV has none, found some: left out";
-        notes.push(Note::new(format!("joint {}", skeleton.label(joint)), text));
-    }
+    losses::changing_sizes(clip, &mut notes);
     losses::resampling(clip, &times, &mut notes);
     (bytes, notes)
 }
