@@ -49,7 +49,6 @@ pub(super) fn short(bytes: &[u8]) -> Option<Short> {
     if digits == 0 {
         return None;
     }
-    #[expect(clippy::arithmetic_side_effects, reason = "a division of floats")]
     let size = whole as f64 / POWERS.get(decimals)?;
     Some(Short { value: if is_negative { -size } else { size }, length, has_point })
 }
@@ -70,9 +69,9 @@ mod tests {
         let mut read = 0;
         for _ in 0..200_000 {
             let digits = below(17) as usize;
-            let mut text: String = (0..digits).map(|_| char::from(b'0' + below(10) as u8)).collect();
+            let mut text: String = (0..digits).map(|_| char::from(b'0' | below(10) as u8)).collect();
             if below(4) > 0 {
-                text.insert(below(digits as u64 + 1) as usize, '.');
+                text.insert(below((digits as u64).saturating_add(1)) as usize, '.');
             }
             text.insert_str(0, ["", "-", "+"][below(3) as usize]);
             let found = short(text.as_bytes());
