@@ -1,13 +1,14 @@
 //! Turnwright: find, mend, reshape and prove the turns of an animation clip.
 //!
 //! Layers, lowest first; each knows only those before it: [`rotor`], [`skeleton`], [`clip`], [`snag`], [`mend`],
-//! [`scene`], [`exchange`], [`demo`], [`proof`], [`raster`], `cli` and `app`.
+//! [`scene`], [`exchange`], [`demo`], [`proof`], [`raster`], [`cli`] and `app`.
 //!
 //! Conventions: right-handed, Y up, seconds, lengths as in the file, radians, `f64`. Degrees appear at two borders
 //! only: in `exchange` and wherever a person reads or types a number.
 
 #[cfg(feature = "gui")]
 pub mod app;
+pub mod cli;
 pub mod clip;
 pub mod demo;
 pub mod exchange;

@@ -1,27 +1,27 @@
-//! Starts the window.
+//! Carries out a command, or opens the window.
 
+use std::path::PathBuf;
 use std::process::ExitCode;
 
+use turnwright::cli::{self, Outcome};
+
 fn main() -> ExitCode {
-    match open_window() {
-        Ok(()) => ExitCode::SUCCESS,
-        Err(error) => {
-            #[expect(clippy::print_stderr, reason = "the one line that says why no window opened")]
-            {
-                eprintln!("turnwright: {error}");
-            }
-            ExitCode::from(2)
-        }
+    match cli::run(std::env::args_os()) {
+        Outcome::Done(code) => ExitCode::from(code),
+        Outcome::OpenWindow(files) => match open_window(files) {
+            Ok(()) => ExitCode::SUCCESS,
+            Err(error) => cli::window_failed(&error),
+        },
     }
 }
 
 #[cfg(feature = "gui")]
-fn open_window() -> Result<(), turnwright::app::StartError> {
+fn open_window(_files: Vec<PathBuf>) -> Result<(), turnwright::app::StartError> {
     turnwright::app::run(|_ctx| Box::new(Welcome))
 }
 
 #[cfg(not(feature = "gui"))]
-fn open_window() -> Result<(), &'static str> {
+fn open_window(_files: Vec<PathBuf>) -> Result<(), &'static str> {
     Err(
         "this build has no window; commands that work without one: demo, snags, mend, convert, sample, picture, proof",
     )

@@ -4,12 +4,14 @@
 //! what they did not touch.
 
 mod continuity;
+mod resample;
 mod rotation_track;
 mod take;
 mod times;
 mod vector_track;
 
 pub use continuity::continuous_angles;
+pub use resample::{cut, resampled};
 pub use rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};
 pub use take::{Clip, FrameGrid, JointTracks};
 pub use times::{Place, Times};

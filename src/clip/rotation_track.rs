@@ -188,6 +188,26 @@ impl RotationTrack {
         })
     }
 
+    /// The cubic's unit value at a share of a segment, and its rate per second in the four numbers, both by the same
+    /// factor: with them as a key the two halves run as the whole did, but for the length of the four numbers.
+    pub(super) fn cubic_cut(&self, key: usize, t: f64) -> (Rotor, Rotor) {
+        let Some(tangents) = &self.tangents else { return (self.at(self.times.at(key)), Rotor::IDENTITY) };
+        let secs = self.times.at(key + 1) - self.times.at(key);
+        let value = self.cubic(tangents, key, t);
+        let weighted = [
+            (self.keys[key], (6.0 * t * t - 6.0 * t) / secs),
+            (tangents[key][1], 3.0 * t * t - 4.0 * t + 1.0),
+            (self.keys[key + 1], (6.0 * t - 6.0 * t * t) / secs),
+            (tangents[key + 1][0], 3.0 * t * t - 2.0 * t),
+        ];
+        let factor = 1.0 / value.norm();
+        let rate = weighted.into_iter().fold(Rotor::new(0.0, 0.0, 0.0, 0.0), |sum, (rotor, weight)| {
+            let part = rotor.scale(weight * factor);
+            Rotor::new(sum.s + part.s, sum.yz + part.yz, sum.zx + part.zx, sum.xy + part.xy)
+        });
+        (value.scale(factor), rate)
+    }
+
     /// Squad between two keys with inner points from their four neighbours; at the ends the key is its own inner point.
     fn squad(&self, key: usize, share: f64) -> Rotor {
         let last = self.keys.len() - 1;

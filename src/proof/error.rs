@@ -1,7 +1,10 @@
 //! Why two clips cannot be compared.
 
+use crate::raster::ImageError;
+use crate::snag::Cancelled;
+
 /// Two clips that have nothing to compare.
-#[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
+#[derive(Debug, thiserror::Error)]
 pub enum ProofError {
     /// Joints are paired by name, and no name is in both.
     #[error(
@@ -17,7 +20,10 @@ pub enum ProofError {
         /// A joint of the clip after.
         example_after: String,
     },
-    /// The machine ran out of patience: the work was stopped from outside.
-    #[error("cancelled")]
-    Cancelled,
+    /// The work was stopped from outside.
+    #[error(transparent)]
+    Cancelled(#[from] Cancelled),
+    /// A picture of the sheet could not be made.
+    #[error(transparent)]
+    Picture(#[from] ImageError),
 }

@@ -8,6 +8,7 @@ use rayon::prelude::*;
 use crate::clip::{Clip, Times};
 use crate::rotor::Rotor;
 use crate::skeleton::{Skeleton, WorldJoint};
+use crate::snag::Cancelled;
 use crate::snag::Progress;
 
 use super::error::ProofError;
@@ -140,7 +141,7 @@ pub fn measure(before: &Clip, after: &Clip, progress: &dyn Progress) -> Result<M
             })
         })
         .collect();
-    let joints = joints.ok_or(ProofError::Cancelled)?;
+    let joints = joints.ok_or(Cancelled)?;
     let tips = measure_tips([before, after], &pairs, &times);
 
     let in_pairs = |side: usize, joint: usize| pairs.iter().any(|pair| pair[side] == joint);

@@ -1,18 +1,20 @@
 //! Proof: what changed between two clips, measured, and the sheet that tells it.
 //!
-//! Measures clips as they play; whoever calls reads the written file back first. Draws no pictures of its own: those
-//! come in as PNG bytes.
+//! Measures clips as they play; whoever calls reads the written file back first.
 
+mod compare;
 mod curve_svg;
 mod curves;
 mod error;
 mod measure;
+mod pictures;
 mod rates;
 mod sheet;
 mod sheet_html;
 mod sheet_json;
 mod untouched;
 
+pub use compare::compare;
 pub use curves::{JointCurves, joint_curves};
 pub use error::ProofError;
 pub use measure::{JointMeasure, Measurement, TipMeasure, measure};

@@ -11,8 +11,12 @@ mod write;
 
 use std::path::{Path, PathBuf};
 
+use turnwright::exchange;
+use turnwright::exchange::OpenOptions;
 use turnwright::exchange::disk;
+use turnwright::exchange::ron;
 use turnwright::rotor::{EulerOrder, Rotor};
+use turnwright::scene::{ClipWork, Document, SourceRef};
 use turnwright::snag::SnagKind;
 
 use body::Motion;
@@ -208,11 +212,31 @@ fn folder(path: &str) -> PathBuf {
     Path::new(env!("CARGO_MANIFEST_DIR")).join(path)
 }
 
+/// The scene of a clip that nothing has been done to, which lies beside it.
+fn scene_bytes(clip_name: &str, clip_bytes: &[u8]) -> Vec<u8> {
+    let folder = tempfile::tempdir().expect("a temporary folder");
+    let clip_path = folder.path().join(clip_name);
+    let opened = exchange::open_bytes(&clip_path, clip_bytes.to_vec(), &OpenOptions::default());
+    let source = opened.expect("a demo clip opens");
+    let work = ClipWork::new(0, 0, source.clips[0].name.clone());
+    let sources = vec![SourceRef { path: clip_path, sha256: source.sha256 }];
+    let scene_path = folder.path().join("scene.ron");
+    let document = Document { sources, works: vec![work] };
+    ron::write(&scene_path, &document, &|_, _| String::new()).expect("the scene can be written");
+    disk::read(&scene_path).expect("what was written can be read")
+}
+
 #[test]
 fn demo_scenes_are_current() {
     let update = std::env::var_os("UPDATE_DEMOS").is_some();
     for (name, faulty, clean) in clips() {
-        for (path, bytes) in [("demo-scenes", faulty), ("tests/data/demo_clean", clean)] {
+        let scene = scene_bytes(name, &faulty);
+        let scene_name = Path::new(name).with_extension("ron").to_string_lossy().into_owned();
+        for (path, name, bytes) in [
+            ("demo-scenes", name, faulty),
+            ("demo-scenes", &scene_name, scene),
+            ("tests/data/demo_clean", name, clean),
+        ] {
             let path = folder(path).join(name);
             if update {
                 disk::write(&path, &bytes).unwrap();

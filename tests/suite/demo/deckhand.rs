@@ -100,7 +100,7 @@ fn pose(t: f64) -> Pose {
         let [from, to] = if side > 0.0 { [2.75, 3.35] } else { [2.0, 2.6] };
         let lift = bump(t, from, to);
         let heel = 20.0 * bump(t, from - 0.12, to - 0.1) + 9.0 * f64::from(side < 0.0);
-        let ankle = DVec3::new(side * 11.5, 8.0 + 8.0 * lift + 0.22 * heel, ahead - 26.0 * stride);
+        let ankle = DVec3::new(side * 11.5, 6.6 + 8.0 * lift + 0.22 * heel, ahead - 26.0 * stride);
         body.bend_leg(names[0], names[1], names[2], ankle, DVec3::new(side * 0.22, 0.0, 1.0));
         body.turn_to(names[2], y(side * 13.0) * x(heel));
         body.turn(names[3], x(-heel * (1.0 - 0.7 * lift)));

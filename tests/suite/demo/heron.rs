@@ -46,7 +46,7 @@ pub(super) fn motion() -> Motion {
             let t = (frame as f64 + (step as f64 + 0.5) / FINE as f64) / RATE;
             let speed = DVec3::new(
                 -0.12 * ease(t, 2.6, 4.2),
-                1.15 * ease(t, 1.32, 1.62) - 0.65 * ease(t, 1.7, 2.9),
+                0.95 * ease(t, 1.32, 1.62) - 0.84 * ease(t, 1.62, 2.5),
                 1.25 * ease(t, 1.35, 2.6),
             );
             travelled += speed / (RATE * FINE as f64);

@@ -1,0 +1,247 @@
+//! The arguments as typed. Checked ones are made of them in `input` and by each command.
+
+use std::path::PathBuf;
+
+use clap::{Args, Parser, Subcommand, ValueEnum};
+
+use crate::clip::PathKind;
+use crate::snag::SnagKind;
+
+/// Finds, mends and proves rotation faults in animation clips.
+///
+/// Without a command it opens the window on the files given, or on the demo scene. Clips are .gltf, .glb, .bvh and
+/// .csv files, and .ron scenes; FILE#NAME or FILE#INDEX names one clip of a file that holds several.
+#[derive(Debug, Parser)]
+#[command(
+    name = "turnwright",
+    version,
+    args_conflicts_with_subcommands = true,
+    disable_help_subcommand = true
+)]
+pub(super) struct Arguments {
+    #[command(subcommand)]
+    pub(super) command: Option<Command>,
+    /// Clips and scenes to open in the window
+    #[arg(value_name = "SCENE|CLIP")]
+    pub(super) files: Vec<PathBuf>,
+}
+
+#[derive(Debug, Subcommand)]
+pub(super) enum Command {
+    Demo(DemoArgs),
+    Snags(SnagsArgs),
+    Mend(MendArgs),
+    Convert(ConvertArgs),
+    Sample(SampleArgs),
+    Proof(ProofArgs),
+    Picture(PictureArgs),
+}
+
+/// Do the main job on the demo scenes: name the snags, mend them, write clips, proof sheets and pictures
+///
+/// Needs no display. Opens the window afterwards if there is one. Exported curves that drive a machine need that
+/// machine's own limits and guarding, local safety codes and a licensed or qualified person.
+#[derive(Debug, Args)]
+pub(super) struct DemoArgs {
+    /// Folder to write to
+    #[arg(short, long, value_name = "DIR", default_value = "turnwright-demo")]
+    pub(super) output: PathBuf,
+}
+
+/// List the rotation faults of clips; ends with 1 if there are any, 0 if there are none
+#[derive(Debug, Args)]
+pub(super) struct SnagsArgs {
+    /// Clips to look through
+    #[arg(value_name = "CLIP", required = true)]
+    pub(super) clips: Vec<String>,
+    /// Print one JSON object a line for each clip
+    #[arg(long)]
+    pub(super) json: bool,
+    /// Look for these kinds only
+    #[arg(long, value_name = "K,…", value_delimiter = ',')]
+    pub(super) kinds: Option<Vec<SnagKind>>,
+}
+
+/// Write clips with their faults mended; all else keeps its numbers
+///
+/// Mends that need a person's judgement are left alone unless their kind is named in --kinds. Exported curves that
+/// drive a machine need that machine's own limits and guarding, local safety codes and a licensed or qualified person.
+#[derive(Debug, Args)]
+pub(super) struct MendArgs {
+    /// Clips to mend
+    #[arg(value_name = "CLIP", required = true)]
+    pub(super) clips: Vec<String>,
+    /// File to write, or folder for several
+    #[arg(short, long, value_name = "OUT|DIR")]
+    pub(super) output: PathBuf,
+    /// Mend these kinds only
+    #[arg(long, value_name = "K,…", value_delimiter = ',')]
+    pub(super) kinds: Option<Vec<SnagKind>>,
+    /// Leave these kinds alone
+    #[arg(long, value_name = "K,…", value_delimiter = ',')]
+    pub(super) skip: Vec<SnagKind>,
+    /// Write a proof sheet, .html or .json; for several files one each, named after them
+    #[arg(long, value_name = "FILE")]
+    pub(super) proof: Option<PathBuf>,
+    /// Print one JSON object a line for each clip
+    #[arg(long)]
+    pub(super) json: bool,
+    /// Allow an input to be replaced
+    #[arg(long)]
+    pub(super) force: bool,
+}
+
+/// Write a clip in another format, at another rate, or a part of it
+#[derive(Debug, Args)]
+pub(super) struct ConvertArgs {
+    /// Clip to convert
+    #[arg(value_name = "CLIP")]
+    pub(super) clip: String,
+    /// File to write; its extension gives the format
+    #[arg(short, long, value_name = "OUT")]
+    pub(super) output: PathBuf,
+    /// Frames per second to resample at
+    #[arg(long, value_name = "FPS")]
+    pub(super) rate: Option<f64>,
+    /// Second at which the part begins
+    #[arg(long, value_name = "S")]
+    pub(super) from: Option<f64>,
+    /// Second at which the part ends
+    #[arg(long, value_name = "S")]
+    pub(super) to: Option<f64>,
+    /// Allow the input to be replaced
+    #[arg(long)]
+    pub(super) force: bool,
+}
+
+/// Print where every joint stands and turns at some times
+#[derive(Debug, Args)]
+#[command(group = clap::ArgGroup::new("times").required(true).args(["at", "rate"]))]
+pub(super) struct SampleArgs {
+    /// Clip to sample
+    #[arg(value_name = "CLIP")]
+    pub(super) clip: String,
+    /// At these seconds
+    #[arg(long, value_name = "T,…", value_delimiter = ',', allow_negative_numbers = true)]
+    pub(super) at: Option<Vec<f64>>,
+    /// At this many evenly spaced times a second
+    #[arg(long, value_name = "FPS")]
+    pub(super) rate: Option<f64>,
+    /// Go from key to key on this path in place of the file's own
+    #[arg(long, value_enum, value_name = "PATH")]
+    pub(super) path: Option<PathName>,
+    /// In the scene, all ancestors applied, in place of relative to the parent
+    #[arg(long)]
+    pub(super) world: bool,
+    /// Form of the output
+    #[arg(long, value_enum, default_value_t = SampleFormat::Json)]
+    pub(super) format: SampleFormat,
+}
+
+/// A path between keys, as typed.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub(super) enum PathName {
+    /// The short arc at constant rate
+    Slerp,
+    /// Smooth through the keys, without a jump in rate
+    Squad,
+    /// Smooth through the keys, without a jump in rate or acceleration
+    Spline,
+    /// Each key held until the next
+    Hold,
+}
+
+impl PathName {
+    /// The track's own path kind; `None` for the spline, which runs through all keys at once.
+    pub(super) const fn kind(self) -> Option<PathKind> {
+        match self {
+            Self::Slerp => Some(PathKind::Slerp),
+            Self::Squad => Some(PathKind::Squad),
+            Self::Hold => Some(PathKind::Hold),
+            Self::Spline => None,
+        }
+    }
+}
+
+/// How samples are printed.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub(super) enum SampleFormat {
+    /// One object: times, and for each joint lists of rotations (x, y, z, w) and positions
+    Json,
+    /// A row for each time, columns NAME.qx .qy .qz .qw .tx .ty .tz
+    Csv,
+}
+
+/// Measure what changed between two clips
+///
+/// Exported curves that drive a machine need that machine's own limits and guarding, local safety codes and a licensed
+/// or qualified person.
+#[derive(Debug, Args)]
+pub(super) struct ProofArgs {
+    /// Clip as it was
+    #[arg(value_name = "BEFORE")]
+    pub(super) before: String,
+    /// Clip as it is now
+    #[arg(value_name = "AFTER")]
+    pub(super) after: String,
+    /// Sheet to write: .html for people, .json for machines
+    #[arg(short, long, value_name = "FILE")]
+    pub(super) output: PathBuf,
+    /// Allow an input to be replaced
+    #[arg(long)]
+    pub(super) force: bool,
+}
+
+/// Draw the skeleton at some times into a PNG file
+#[derive(Debug, Args)]
+pub(super) struct PictureArgs {
+    /// Clip, or scene to see before and after
+    #[arg(value_name = "CLIP|SCENE")]
+    pub(super) clip: String,
+    /// PNG file to write
+    #[arg(short, long, value_name = "PNG")]
+    pub(super) output: PathBuf,
+    /// At these seconds; eight spread over the clip if not given
+    #[arg(long, value_name = "T,…", value_delimiter = ',', allow_negative_numbers = true)]
+    pub(super) at: Option<Vec<f64>>,
+    /// Width and height of the picture in pixels
+    #[arg(long, value_name = "WxH", default_value = "1600x900", value_parser = parse_size)]
+    pub(super) size: [usize; 2],
+    /// Allow an input to be replaced
+    #[arg(long)]
+    pub(super) force: bool,
+}
+
+/// Smallest and largest side of a picture, in pixels.
+const SIDES: std::ops::RangeInclusive<usize> = 16..=8192;
+
+fn parse_size(text: &str) -> Result<[usize; 2], String> {
+    let error = || {
+        let (least, most) = (SIDES.start(), SIDES.end());
+        format!(
+            "expected width x height in pixels, each from {least} to {most}, such as 1600x900, found `{text}`"
+        )
+    };
+    let (width, height) = text.split_once(['x', 'X', '×']).ok_or_else(error)?;
+    let side = |text: &str| text.trim().parse().ok().filter(|side| SIDES.contains(side)).ok_or_else(error);
+    Ok([side(width)?, side(height)?])
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn the_command_line_is_sound() {
+        <Arguments as clap::CommandFactory>::command().debug_assert();
+    }
+
+    #[test]
+    fn sizes_are_two_numbers_within_bounds() {
+        assert_eq!(parse_size("640x360"), Ok([640, 360]));
+        for wrong in ["", "640", "640x", "x360", "-1x5", "9000x100", "640x360x2", "1e3x5"] {
+            let error = parse_size(wrong).unwrap_err();
+            assert!(error.contains(&format!("found `{wrong}`")), "{error}");
+        }
+    }
+}

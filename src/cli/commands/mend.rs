@@ -1,0 +1,159 @@
+//! `mend`: writes clips with their faults mended.
+
+use std::path::Path;
+use std::sync::Arc;
+
+use crate::cli::DONE;
+use crate::cli::args::MendArgs;
+use crate::cli::error::CliError;
+use crate::cli::input::{self, Input};
+use crate::cli::output::text::{ClipReport, MendReport};
+use crate::cli::output::{Output, json, text};
+use crate::cli::progress::ProgressLine;
+use crate::cli::targets;
+use crate::clip::Clip;
+use crate::exchange::{self, Guard};
+use crate::mend::{self, SurveyOptions};
+use crate::proof;
+use crate::snag::{Remedy, Snag, SnagKind};
+
+use super::proof::{SheetFormat, write_sheet};
+
+/// Gives 0, however much was mended. Files that can't be mended do not keep the others from it.
+pub(crate) fn run(args: &MendArgs, output: &mut Output) -> Result<u8, CliError> {
+    let sheet_format = args.proof.as_deref().map(SheetFormat::of).transpose()?;
+    let kinds: Vec<SnagKind> = args.kinds.clone().unwrap_or_else(|| SnagKind::ALL.to_vec());
+    let choice = Choice {
+        kinds: kinds.into_iter().filter(|kind| !args.skip.contains(kind)).collect(),
+        has_named_kinds: args.kinds.is_some(),
+    };
+
+    let mut inputs = Vec::new();
+    let mut failed = 0;
+    for text in &args.clips {
+        match input::open(text, output) {
+            Ok(opened) => inputs.extend(opened),
+            Err(error) if args.clips.len() == 1 => return Err(error),
+            Err(error) => {
+                output.error(&error);
+                failed += 1;
+            }
+        }
+    }
+    let sources: Vec<&Path> = inputs.iter().map(|input| input.source.path.as_path()).collect();
+    let targets = targets::targets(&args.output, &sources)?;
+    let guard = Guard { inputs: inputs.iter().flat_map(Input::files).collect(), force: args.force };
+    // Nothing is written when something is in the way.
+    for target in &targets {
+        guard.check(target)?;
+    }
+    for (input, target) in inputs.iter().zip(&targets) {
+        let results = mend_input(input, &choice, args.json, output)?;
+        let choice = input.is_named.then(|| input.first());
+        let written = exchange::write(&input.source, &results, choice, target, &guard)?;
+        output.notes(target, &written.notes);
+        output.say(&format!("wrote {}", target.display()));
+        if let (Some(sheet), Some(format)) = (&args.proof, sheet_format) {
+            let path = targets::beside(sheet, target, inputs.len());
+            guard.check(&path)?;
+            write_sheet(input, &input.chosen, target, &path, format, output)?;
+        }
+    }
+    if failed > 0 {
+        return Err(CliError::Some { failed, total: args.clips.len() });
+    }
+    Ok(DONE)
+}
+
+/// Which snags to mend.
+pub(super) struct Choice {
+    /// Of these kinds.
+    pub(super) kinds: Vec<SnagKind>,
+    /// Whether the user named the kinds: then also those that need judgement.
+    pub(super) has_named_kinds: bool,
+}
+
+impl Choice {
+    /// Every kind, safe mends only.
+    pub(super) fn safe() -> Self {
+        Self { kinds: SnagKind::ALL.to_vec(), has_named_kinds: false }
+    }
+
+    fn takes(&self, snag: &Snag) -> bool {
+        snag.remedy != Remedy::Ask && (snag.safe || self.has_named_kinds)
+    }
+}
+
+/// A result for each clip of the source: those meant mended, the others as they are. Reports each on the way.
+fn mend_input(
+    input: &Input,
+    choice: &Choice,
+    is_json: bool,
+    output: &mut Output,
+) -> Result<Vec<Arc<Clip>>, CliError> {
+    let mut results = input.results.clone();
+    for &index in &input.chosen {
+        let (mended, snags, mends) = mend_clip(&input.source.path, &input.results[index], choice)?;
+        let label = input.source.clip_label(index);
+        let report = ClipReport {
+            path: &input.source.path,
+            label: &label,
+            index,
+            clip: &input.results[index],
+            snags: &snags,
+            mends: Some(&mends),
+        };
+        if is_json {
+            output.line(json::clip(&report))?;
+        } else {
+            text::clip(output, &report)?;
+        }
+        results[index] = mended;
+    }
+    Ok(results)
+}
+
+/// The mended clip, its snags, and what was done about them.
+pub(super) fn mend_clip(
+    path: &Path,
+    clip: &Arc<Clip>,
+    choice: &Choice,
+) -> Result<(Arc<Clip>, Vec<Snag>, MendReport), CliError> {
+    let progress = ProgressLine::new(format!("{}: mending", path.display()));
+    let survey = mend::survey(clip, &SurveyOptions { kinds: choice.kinds.clone() }, &progress)?;
+    let mended: Vec<bool> = survey.snags.iter().map(|snag| choice.takes(snag)).collect();
+    let takes_all =
+        survey.snags.iter().zip(&mended).all(|(snag, &taken)| taken || snag.remedy == Remedy::Ask);
+    let result = if survey.snags.is_empty() {
+        clip.clone()
+    } else if takes_all {
+        Arc::new(survey.mended)
+    } else {
+        // In mending order: each kind was found on what the kinds before it left.
+        let mut taken: Vec<Snag> = survey
+            .snags
+            .iter()
+            .zip(&mended)
+            .filter(|(_, taken)| **taken)
+            .map(|(snag, _)| snag.clone())
+            .collect();
+        taken.sort_by_key(|snag| (snag.kind, snag.joint, snag.first_key));
+        let result = mend::apply_all(clip, &taken)
+            .map_err(|source| CliError::Mend { path: path.to_owned(), source })?;
+        Arc::new(result)
+    };
+    let changes_rad = survey
+        .changes_rad
+        .iter()
+        .zip(&mended)
+        .map(|(&change, &taken)| if taken { change } else { 0.0 })
+        .collect();
+    let max_change_rad = if mended.contains(&true) {
+        let measured = proof::measure(clip, &result, &progress)
+            .map_err(|source| CliError::Proof { path: path.to_owned(), source })?;
+        measured.max_change_rad()
+    } else {
+        0.0
+    };
+    Ok((result, survey.snags, MendReport { mended, changes_rad, max_change_rad }))
+}

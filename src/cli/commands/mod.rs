@@ -1,0 +1,9 @@
+//! The commands, one file each.
+
+pub(super) mod convert;
+pub(super) mod demo;
+pub(super) mod mend;
+pub(super) mod picture;
+pub(super) mod proof;
+pub(super) mod sample;
+pub(super) mod snags;

@@ -1,0 +1,64 @@
+//! `snags`: lists the faults of clips.
+
+use crate::cli::args::SnagsArgs;
+use crate::cli::error::CliError;
+use crate::cli::input::{self, Input};
+use crate::cli::output::text::ClipReport;
+use crate::cli::output::{Output, json, text};
+use crate::cli::progress::ProgressLine;
+use crate::cli::{DONE, FOUND};
+use crate::mend::{self, SurveyOptions};
+use crate::snag::{Snag, SnagKind};
+
+/// Gives 1 when any snag was found. A file that can't be read does not keep the others from being looked through.
+pub(crate) fn run(args: &SnagsArgs, output: &mut Output) -> Result<u8, CliError> {
+    let kinds = args.kinds.clone().unwrap_or_else(|| SnagKind::ALL.to_vec());
+    let mut has_found = false;
+    let mut failed = 0;
+    for text in &args.clips {
+        let listed = input::open(text, output).and_then(|inputs| {
+            for input in &inputs {
+                has_found |= list(input, &kinds, args.json, output)?;
+            }
+            Ok(())
+        });
+        match listed {
+            Ok(()) => {}
+            Err(CliError::Output(error)) => return Err(CliError::Output(error)),
+            Err(error) if args.clips.len() == 1 => return Err(error),
+            Err(error) => {
+                output.error(&error);
+                failed += 1;
+            }
+        }
+    }
+    if failed > 0 {
+        return Err(CliError::Some { failed, total: args.clips.len() });
+    }
+    Ok(if has_found { FOUND } else { DONE })
+}
+
+fn list(input: &Input, kinds: &[SnagKind], is_json: bool, output: &mut Output) -> Result<bool, CliError> {
+    let mut has_found = false;
+    for &index in &input.chosen {
+        let clip = &input.results[index];
+        let snags = snags_of(input, index, kinds)?;
+        has_found |= !snags.is_empty();
+        let label = input.source.clip_label(index);
+        let report =
+            ClipReport { path: &input.source.path, label: &label, index, clip, snags: &snags, mends: None };
+        if is_json {
+            output.line(json::clip(&report))?;
+        } else {
+            text::clip(output, &report)?;
+        }
+    }
+    Ok(has_found)
+}
+
+fn snags_of(input: &Input, index: usize, kinds: &[SnagKind]) -> Result<Vec<Snag>, CliError> {
+    let progress = ProgressLine::new(format!("{}: looking for snags", input.source.path.display()));
+    let options = SurveyOptions { kinds: kinds.to_vec() };
+    let survey = mend::survey(&input.results[index], &options, &progress)?;
+    Ok(survey.snags)
+}

@@ -1,0 +1,116 @@
+//! Why a command failed: one line that names the file, the place, what was expected and found, and what to do.
+
+use std::io;
+use std::path::PathBuf;
+
+use crate::exchange::{self, WriteError, disk, ron};
+use crate::mend::MendError;
+use crate::proof::ProofError;
+use crate::raster::ImageError;
+use crate::snag::Cancelled;
+
+/// Anything that ends a command.
+#[derive(Debug, thiserror::Error)]
+pub enum CliError {
+    /// A clip file that can't be read.
+    #[error("{}", with_advice(&.0.to_string(), advice_for_open(.0)))]
+    Open(#[from] exchange::OpenError),
+    /// A scene that can't be read.
+    #[error("{}", with_advice(&.0.to_string(), "open it in a text editor, or save it anew from the window"))]
+    Scene(#[from] ron::SceneError),
+    /// A result that can't be written.
+    #[error("{}", with_advice(&.0.to_string(), "choose another place with -o"))]
+    Write(#[from] WriteError),
+    /// A sheet or picture that can't be written.
+    #[error("{}", with_advice(&.0.to_string(), "choose another place with -o"))]
+    Disk(#[from] disk::DiskError),
+    /// A file without a clip.
+    #[error("{path}: animations: expected at least one clip, found none; choose a file with an animation", path = path.display())]
+    NoClip {
+        /// The file.
+        path: PathBuf,
+    },
+    /// A clip that the file does not have.
+    #[error("{path}: clip: expected one of {known}, found `{found}`; write {path}#NAME or {path}#INDEX", path = path.display())]
+    NoSuchClip {
+        /// The file.
+        path: PathBuf,
+        /// Names of its clips.
+        known: String,
+        /// What was asked for.
+        found: String,
+    },
+    /// Two clips that have nothing to compare.
+    #[error("{path}: {source}; compare a clip with one made from it", path = path.display())]
+    Proof {
+        /// The file after.
+        path: PathBuf,
+        /// Why.
+        source: ProofError,
+    },
+    /// A mend that does not fit its clip.
+    #[error("{path}: {source}; please report this", path = path.display())]
+    Mend {
+        /// The file.
+        path: PathBuf,
+        /// Why.
+        source: MendError,
+    },
+    /// A picture that can't be made.
+    #[error("{path}: {source}; choose another size with --size", path = path.display())]
+    Picture {
+        /// The file.
+        path: PathBuf,
+        /// Why.
+        source: ImageError,
+    },
+    /// An argument that makes no sense by itself or with the clip.
+    #[error("{place}: expected {expected}, found {found}; {advice}")]
+    Argument {
+        /// Which argument, or which file and argument.
+        place: String,
+        /// What would do.
+        expected: String,
+        /// What was there.
+        found: String,
+        /// What to do.
+        advice: &'static str,
+    },
+    /// Some of several files failed; each has had its line.
+    #[error("{failed} of {total} files failed; see the lines above")]
+    Some {
+        /// How many failed.
+        failed: usize,
+        /// Of how many.
+        total: usize,
+    },
+    /// The work was stopped.
+    #[error(transparent)]
+    Cancelled(#[from] Cancelled),
+    /// The output could not be printed.
+    #[error("standard output: cannot write: {0}; check where it goes")]
+    Output(#[source] io::Error),
+}
+
+impl From<io::Error> for CliError {
+    fn from(error: io::Error) -> Self {
+        Self::Output(error)
+    }
+}
+
+/// A message that says what to do: what it says already, else the advice.
+fn with_advice(message: &str, advice: &str) -> String {
+    if message.contains("; ") { message.to_owned() } else { format!("{message}; {advice}") }
+}
+
+fn advice_for_open(error: &exchange::OpenError) -> &'static str {
+    match error {
+        exchange::OpenError::Disk(disk::DiskError::Io { source, .. }) => match source.kind() {
+            io::ErrorKind::NotFound => "check its name and folder",
+            io::ErrorKind::PermissionDenied => "check who may read it",
+            _ => "check the disk",
+        },
+        exchange::OpenError::Disk(disk::DiskError::Folder(_)) => "name a file in it",
+        _ => "put it right there, or export the clip anew",
+    }
+}

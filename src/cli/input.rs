@@ -1,0 +1,187 @@
+//! Opens what the command line names: clips by address, and scenes with their passes applied.
+
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+use crate::clip::Clip;
+use crate::exchange::{self, ClipAddress, OpenOptions, Source, disk, ron};
+use crate::scene::Evaluator;
+
+use super::error::CliError;
+use super::output::Output;
+
+/// A source file with the clips that the passes of a scene make of its own; without a scene these are the same.
+#[derive(Debug)]
+pub(super) struct Input {
+    /// What the user named: the clip file or the scene.
+    pub(super) path: PathBuf,
+    /// The clip file.
+    pub(super) source: Source,
+    /// A result for each clip of the source.
+    pub(super) results: Vec<Arc<Clip>>,
+    /// Indices of the clips that are meant.
+    pub(super) chosen: Vec<usize>,
+    /// Whether the user named one of several clips.
+    pub(super) is_named: bool,
+}
+
+impl Input {
+    /// The first clip that is meant.
+    pub(super) fn first(&self) -> usize {
+        self.chosen.first().copied().unwrap_or(0)
+    }
+
+    /// The clip that is meant when there may be only one.
+    pub(super) fn clip(&self) -> &Arc<Clip> {
+        &self.results[self.first()]
+    }
+
+    /// Files that must not be written over.
+    pub(super) fn files(&self) -> Vec<PathBuf> {
+        vec![self.path.clone(), self.source.path.clone()]
+    }
+}
+
+/// Opens what `text` names: a clip file gives one input, a scene one for each of its sources that has work.
+///
+/// What was odd but no error is told on stderr.
+pub(super) fn open(text: &str, output: &mut Output) -> Result<Vec<Input>, CliError> {
+    let address = ClipAddress::parse(text);
+    if address.path.is_dir() {
+        return Err(exchange::OpenError::Disk(disk::DiskError::Folder(address.path)).into());
+    }
+    let inputs =
+        if is_scene(&address.path) { open_scene(&address, output)? } else { vec![open_clips(&address)?] };
+    for input in &inputs {
+        output.notes(&input.source.path, &input.source.notes);
+    }
+    Ok(inputs)
+}
+
+/// As [`open`], where one clip is wanted: the first that is meant.
+pub(super) fn open_one(text: &str, output: &mut Output) -> Result<Input, CliError> {
+    let mut inputs = open(text, output)?;
+    // `open` gives at least one.
+    Ok(inputs.swap_remove(0))
+}
+
+/// Whether a path names a scene.
+pub(super) fn is_scene(path: &Path) -> bool {
+    path.extension().is_some_and(|extension| extension.eq_ignore_ascii_case("ron"))
+}
+
+fn open_clips(address: &ClipAddress) -> Result<Input, CliError> {
+    let source = exchange::open(&address.path, &OpenOptions::default())?;
+    let count = source.clips.len();
+    if count == 0 {
+        return Err(CliError::NoClip { path: address.path.clone() });
+    }
+    let chosen = match &address.clip {
+        None => (0..count).collect(),
+        Some(found) => {
+            let index = source.find_clip(found).ok_or_else(|| {
+                let labels: Vec<String> = (0..count).map(|index| source.clip_label(index)).collect();
+                CliError::NoSuchClip {
+                    path: address.path.clone(),
+                    known: listed(&labels),
+                    found: found.clone(),
+                }
+            })?;
+            vec![index]
+        }
+    };
+    Ok(Input {
+        path: address.path.clone(),
+        results: source.clips.clone(),
+        source,
+        chosen,
+        is_named: address.clip.is_some(),
+    })
+}
+
+fn open_scene(address: &ClipAddress, output: &mut Output) -> Result<Vec<Input>, CliError> {
+    let mut scene = ron::read(&address.path)?;
+    let mut inputs = Vec::new();
+    for (index, reference) in scene.document.sources.clone().into_iter().enumerate() {
+        let source = exchange::open(&reference.path, &OpenOptions::default())?;
+        if source.sha256 != reference.sha256 {
+            output.note(&reference.path, "has changed since the scene was saved; its passes may not fit");
+        }
+        let mut results = source.clips.clone();
+        let mut chosen = Vec::new();
+        for work in 0..scene.document.works.len() {
+            let (of, clip) = (scene.document.works[work].source, scene.document.works[work].clip);
+            let Some(original) = source.clips.get(clip).filter(|_| of == index) else { continue };
+            for label in scene.fit(work, &original.skeleton) {
+                output.note(
+                    &address.path,
+                    &format!("joint `{label}` is no longer there; its mends are left out"),
+                );
+            }
+            let evaluation = Evaluator::default().evaluate(original, &scene.document.works[work].passes);
+            for problem in evaluation.stages.iter().filter_map(|stage| stage.problem.as_ref()) {
+                output.note(&address.path, &format!("{problem}; the pass is left out"));
+            }
+            results[clip] = evaluation.result;
+            let is_meant = address.clip.as_ref().is_none_or(|wanted| {
+                *wanted == scene.document.works[work].name
+                    || *wanted == source.clip_label(clip)
+                    || *wanted == work.to_string()
+            });
+            if is_meant {
+                chosen.push(clip);
+            }
+        }
+        if !chosen.is_empty() {
+            let is_named = address.clip.is_some();
+            inputs.push(Input { path: address.path.clone(), source, results, chosen, is_named });
+        }
+    }
+    if inputs.is_empty() {
+        let path = address.path.clone();
+        return Err(match &address.clip {
+            Some(found) => {
+                let names: Vec<String> = scene.document.works.iter().map(|work| work.name.clone()).collect();
+                CliError::NoSuchClip { path, known: listed(&names), found: found.clone() }
+            }
+            None => CliError::NoClip { path },
+        });
+    }
+    Ok(inputs)
+}
+
+/// A few names, and how many more there are.
+fn listed(names: &[String]) -> String {
+    const MOST: usize = 12;
+    let shown: Vec<String> = names.iter().take(MOST).map(|name| format!("`{name}`")).collect();
+    let more = names.len().saturating_sub(MOST);
+    if more == 0 { shown.join(", ") } else { format!("{} and {more} more", shown.join(", ")) }
+}
+
+/// The error for a file that the window is to open and that is not there.
+pub(super) fn no_file_to_open(path: &Path) -> Option<CliError> {
+    if path.exists() {
+        return None;
+    }
+    let text = path.to_string_lossy();
+    let address = ClipAddress::parse(&text);
+    if address.path.exists() {
+        return None;
+    }
+    let is_word = text.chars().all(|letter| letter.is_ascii_lowercase());
+    let (expected, found, advice) = if is_word {
+        (
+            "a file or one of demo, snags, mend, convert, sample, proof, picture",
+            "neither",
+            "see turnwright --help",
+        )
+    } else {
+        ("a file that exists", "none", "check its name and folder")
+    };
+    Some(CliError::Argument {
+        place: text.into_owned(),
+        expected: expected.to_owned(),
+        found: found.to_owned(),
+        advice,
+    })
+}
