@@ -1,5 +1,7 @@
 //! How far each key lies off the way between its neighbours, and what is usual for that near by.
 
+use std::ops::Range;
+
 use crate::rotor::Rotor;
 
 use super::scan::Scan;
@@ -22,6 +24,7 @@ pub(super) struct Roughness {
     pub(super) residual: Vec<f64>,
     usual: Vec<Usual>,
     block: usize,
+    reach: usize,
 }
 
 /// What is usual near a key, in radians.
@@ -31,8 +34,6 @@ pub(super) struct Usual {
     pub(super) median: f64,
     /// Its robust spread.
     pub(super) spread: f64,
-    /// The 90th percentile.
-    pub(super) high: f64,
     /// Median step from key to key.
     pub(super) step: f64,
 }
@@ -68,14 +69,20 @@ impl Roughness {
             .step_by(block)
             .map(|start| {
                 let middle = start + block / 2;
-                usual(&poses, &residual, middle.saturating_sub(reach), (middle + reach + 1).min(count))
+                usual(&poses, &residual, middle.saturating_sub(reach)..(middle + reach + 1).min(count), 0..0)
             })
             .collect();
-        Some(Self { poses, secs, residual, usual, block })
+        Some(Self { poses, secs, residual, usual, block, reach })
     }
 
     pub(super) fn len(&self) -> usize {
         self.poses.len()
+    }
+
+    /// What is usual around a run of keys, those next to its ends left out with it.
+    pub(super) fn usual_without(&self, first: usize, last: usize) -> Usual {
+        let near = first.saturating_sub(self.reach)..(last + self.reach + 1).min(self.len());
+        usual(&self.poses, &self.residual, near, first.saturating_sub(1)..last + 2)
     }
 
     /// What is usual around a key.
@@ -111,20 +118,23 @@ pub(super) fn angle_of_dot(dot: f64) -> f64 {
     2.0 * dot.abs().min(1.0).acos()
 }
 
-fn usual(poses: &[Rotor], residual: &[f64], from: usize, to: usize) -> Usual {
+fn usual(poses: &[Rotor], residual: &[f64], near: Range<usize>, without: Range<usize>) -> Usual {
     // The ends have no residual of their own.
-    let mut own: Vec<f64> = residual[from.max(1)..to.min(residual.len() - 1).max(from.max(1))].to_vec();
+    let near = near.start.max(1)..near.end.min(residual.len() - 1);
+    let keys = near.filter(|key| !without.contains(key));
+    let mut own: Vec<f64> = keys.clone().map(|key| residual[key]).collect();
     if own.is_empty() {
         return Usual::default();
     }
     let median = take(&mut own, 0.5);
-    let high = take(&mut own, 0.9);
     own.iter_mut().for_each(|value| *value = (*value - median).abs());
     let spread = SIGMA_PER_MAD * take(&mut own, 0.5);
-    let mut steps: Vec<f64> =
-        (from.max(1)..to).map(|key| angle_of_dot(poses[key - 1].dot(poses[key]))).collect();
+    let mut steps: Vec<f64> = keys
+        .filter(|key| !without.contains(&(key + 1)))
+        .map(|key| angle_of_dot(poses[key - 1].dot(poses[key])))
+        .collect();
     let step = if steps.is_empty() { 0.0 } else { take(&mut steps, 0.5) };
-    Usual { median, spread, high, step }
+    Usual { median, spread, step }
 }
 
 /// The value at a share of the sorted list.

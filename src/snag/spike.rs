@@ -25,7 +25,7 @@ const LEAST_SPREAD_RAD: f64 = 0.2 / 180.0 * PI;
 const LEAST_SCORE: f64 = 5.0;
 
 /// What a joint can do by itself, in radians per second squared: beyond it even a single key far off is told.
-const FASTEST: f64 = 25_000.0 / 180.0 * PI;
+const FASTEST: f64 = 12_000.0 / 180.0 * PI;
 
 /// How many times rougher the motion is with the run than without: a spike takes its roughness with it, while a fast move
 /// that is sampled coarsely stays rough whichever key is taken out. First for what a joint could do, then for the rest.
@@ -36,16 +36,26 @@ const LEAST_GAIN: f64 = 4.0;
 const LEAST_GAIN_IMPOSSIBLE: f64 = 3.0;
 
 /// Score times gain: either may be small where the other is large.
-const LEAST_PRODUCT: f64 = 75.0;
+const LEAST_PRODUCT: f64 = 60.0;
+
+/// From this product on a smaller gain will do, if the run lies off by all of the roughness.
+const CLEAR_PRODUCT: f64 = 160.0;
+const LEAST_GAIN_CLEAR: f64 = 3.3;
 
 /// A run that ends further from where it began, in its own sizes, is a step and no spike.
-const STEP_SIZES: f64 = 2.5;
+const STEP_SIZES: f64 = 1.2;
+
+/// Unless the joint moves that fast near by too: so many usual steps for each key.
+const USUAL_STEPS: f64 = 2.0;
 
 /// Sound keys between two spikes that are looked at together.
 const NEXT_KEYS: usize = 3;
 
 /// The keys after a calibration pose at the start are no spike.
 const START_KEYS: usize = 2;
+
+/// So near the end nothing shows that the motion goes on as before.
+const END_KEYS: usize = 3;
 
 /// A run of keys that may be a spike.
 #[derive(Clone, Copy, Debug)]
@@ -170,7 +180,8 @@ fn weigh(rough: &Roughness, first: usize, last: usize) -> Run {
 /// How sure it is that `run` is a spike with another close by: of two neither takes the other's roughness with it, so
 /// both are drawn anew to see what stays rough.
 fn beside_another(scan: &Scan<'_>, rough: &Roughness, run: Run) -> Option<f64> {
-    if run.last > run.first + 1 {
+    // The roughness must be the run's own.
+    if run.last > run.first + 1 || run.peak > 1.3 * run.size {
         return None;
     }
     let mut least = run.rest;
@@ -186,22 +197,26 @@ fn beside_another(scan: &Scan<'_>, rough: &Roughness, run: Run) -> Option<f64> {
             }
         }
     }
-    judge(scan, rough, Run { rest: least, ..run }, 2.0 * LEAST_PRODUCT)
+    judge(scan, rough, Run { rest: least, ..run }, CLEAR_PRODUCT)
 }
 
 /// Whether a run is a spike, and how sure that is, 0.5 to 1.
 fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Option<f64> {
-    if run.first <= START_KEYS || (run.first - 1..=run.last).any(|key| !scan.moves_after(key)) {
+    if run.first <= START_KEYS
+        || run.last + END_KEYS >= rough.len()
+        || (run.first - 1..=run.last).any(|key| !scan.moves_after(key))
+    {
         return None;
     }
-    let usual = rough.usual(run.first);
+    let usual = rough.usual_without(run.first, run.last);
     let score = (run.peak - usual.median) / usual.spread.max(LEAST_SPREAD_RAD);
     let gain = run.peak / run.rest.max(LEAST_SPREAD_RAD);
     // The acceleration that the roughness stands for, twice the distance in half the span's square.
     let half_secs =
         (rough.secs[run.last + 1] - rough.secs[run.first - 1]) / (run.last + 2 - run.first) as f64;
     let least_gain = match 2.0 * run.peak / (FASTEST * half_secs * half_secs) {
-        times if times > 20.0 => LEAST_GAIN_IMPOSSIBLE,
+        times if times > 40.0 => LEAST_GAIN_IMPOSSIBLE,
+        times if times > 1.0 && score * gain >= CLEAR_PRODUCT && run.peak <= run.size => LEAST_GAIN_CLEAR,
         times if times > 1.0 => LEAST_GAIN,
         _ => LEAST_GAIN_SLOW,
     };
@@ -209,7 +224,8 @@ fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Op
         && score >= LEAST_SCORE
         && gain >= least_gain
         && score * gain >= least_product
-        && run.across <= STEP_SIZES * run.size;
+        && run.across
+            <= (STEP_SIZES * run.size).max(USUAL_STEPS * usual.step * (run.last + 2 - run.first) as f64);
     is_spike.then(|| 1.0 - 0.5 * (LEAST_PRODUCT / (score * gain)).sqrt())
 }
 

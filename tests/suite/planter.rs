@@ -362,6 +362,11 @@ fn planted_faults_are_found_and_mended() {
     for file in FILES {
         let Some(grounds) = grounds(file) else { return };
         for ground in &grounds {
+            for snag in &ground.snags {
+                if matches!(snag.kind, SnagKind::HalfTurn | SnagKind::Spike) {
+                    println!("clean {} {:.2} {}", ground.name, snag.confidence, snag.text);
+                }
+            }
             if ground.clip.grid.count() < 16 {
                 continue;
             }
