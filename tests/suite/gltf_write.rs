@@ -390,7 +390,14 @@ fn a_text_document_takes_its_new_buffer_along() {
     assert_eq!(output.bin.as_ref().unwrap().0, "My clip.bin");
     let raw = raw_of_uri(&output);
     assert_eq!(raw["buffers"][0]["uri"], "My%20clip.bin");
-    assert_eq!(output.external, Vec::<String>::new());
+    assert_eq!(
+        output.external,
+        document
+            .external_files()
+            .into_iter()
+            .filter(|file| file != "Animation_Node_05.bin")
+            .collect::<Vec<_>>()
+    );
     let (_, again) = read_back(&output, path);
     assert_eq!(again[0], after);
 }
