@@ -16,8 +16,8 @@ fn main() -> ExitCode {
 }
 
 #[cfg(feature = "gui")]
-fn open_window(_files: Vec<PathBuf>) -> Result<(), turnwright::app::StartError> {
-    turnwright::app::run(|_ctx| Box::new(Welcome))
+fn open_window(files: Vec<PathBuf>) -> Result<(), turnwright::app::StartError> {
+    turnwright::app::open(turnwright::app::Start::of_arguments(&files))
 }
 
 #[cfg(not(feature = "gui"))]
@@ -25,22 +25,4 @@ fn open_window(_files: Vec<PathBuf>) -> Result<(), &'static str> {
     Err(
         "this build has no window; commands that work without one: demo, snags, mend, convert, sample, picture, proof",
     )
-}
-
-/// A window that says what it is.
-#[cfg(feature = "gui")]
-struct Welcome;
-
-#[cfg(feature = "gui")]
-impl turnwright::app::Screen for Welcome {
-    fn ui(&mut self, ui: &mut egui::Ui) {
-        egui::CentralPanel::default().show(ui, |ui| {
-            ui.heading("Turnwright");
-            ui.label("Drop a clip here.");
-        });
-    }
-
-    fn title(&self) -> String {
-        "Turnwright".to_owned()
-    }
 }

@@ -1,9 +1,41 @@
 //! The window. Nothing below this folder knows egui.
+//!
+//! | file | what is there |
+//! |---|---|
+//! | `window` | the [`Window`]: what is open, and one frame of it |
+//! | `logic` | what happens between frames: answers of jobs, and what panels asked for |
+//! | `commands` | everything a person can ask for, in one table |
+//! | `bench`, `session` | what is open and worked out; what is looked at |
+//! | `jobs`, `file_picker` | work on other threads |
+//! | `view_models` | what panels show, as plain data without egui |
+//! | `panels`, `widgets`, `pictures`, `theme` | how it looks |
+//! | `paint`, `runners`, `screen` | how a window comes onto the display, with a graphics driver or without |
 
+pub mod bench;
+pub mod commands;
+mod file_picker;
+mod jobs;
+mod logic;
 pub mod paint;
+mod panels;
+mod pictures;
 pub mod runners;
 mod screen;
+pub mod session;
+mod theme;
+pub mod view_models;
+mod widgets;
+mod window;
 
 pub use runners::StartError;
 pub use runners::run;
 pub use screen::Screen;
+pub use window::{Start, Window};
+
+/// Opens the window and returns when it is closed.
+///
+/// # Errors
+/// As [`run`].
+pub fn open(start: Start) -> Result<(), StartError> {
+    run(|ctx| Box::new(Window::new(ctx, start)))
+}

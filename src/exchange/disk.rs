@@ -59,6 +59,44 @@ pub fn read(path: &Path) -> Result<Vec<u8>, DiskError> {
     Ok(bytes)
 }
 
+/// One thing in a folder.
+#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord)]
+pub struct Entry {
+    /// `false` sorts before `true`: folders come first.
+    is_file: bool,
+    /// Its name.
+    pub name: String,
+}
+
+impl Entry {
+    /// Whether it is a folder.
+    pub fn is_folder(&self) -> bool {
+        !self.is_file
+    }
+}
+
+/// The most entries of a folder that are told.
+const MOST_ENTRIES: usize = 5000;
+
+/// What lies in a folder: folders first, then files, by name. Of a very large folder only a part.
+///
+/// # Errors
+/// When it is missing, no folder, or the system refuses.
+pub fn entries(folder: &Path) -> Result<Vec<Entry>, DiskError> {
+    let failed = |source| DiskError::Io { path: folder.to_owned(), verb: "read", source };
+    let mut found: Vec<Entry> = std::fs::read_dir(folder)
+        .map_err(failed)?
+        .take(MOST_ENTRIES)
+        .flatten()
+        .map(|entry| Entry {
+            is_file: !entry.path().is_dir(),
+            name: entry.file_name().to_string_lossy().into_owned(),
+        })
+        .collect();
+    found.sort();
+    Ok(found)
+}
+
 /// Puts `bytes` in place of a file's content at one stroke: written beside it first, then renamed over it.
 /// Missing folders on the way are made.
 ///

@@ -1,0 +1,349 @@
+//! What is open: the document with its history, the files behind it, and what has been worked out about its clips.
+
+use std::path::{Path, PathBuf};
+use std::sync::{Arc, Mutex};
+
+use crate::clip::Clip;
+use crate::exchange::Source;
+use crate::scene::{
+    ClipWork, Document, Evaluation, Evaluator, History, Pass, PassId, PassStep, Revision, SnagMark, SourceRef,
+};
+use crate::snag::Snag;
+
+use super::commands::Situation;
+use super::session::Session;
+use super::view_models::{
+    Changes, CurveSet, CurveView, HeatKind, HeatMap, Memo, SnagFilter, SnagOrder, SnagRow, SnagState,
+    snag_rows, snag_states,
+};
+
+/// A file of the document.
+#[derive(Clone, Debug)]
+pub enum SourceState {
+    /// Open, and the same as when the scene was saved.
+    Ready(Arc<Source>),
+    /// Open, but its bytes are not those that the scene was saved with.
+    Changed(Arc<Source>),
+    /// Not to be opened; why.
+    Missing(String),
+}
+
+impl SourceState {
+    /// The file, if it is open.
+    pub fn source(&self) -> Option<&Arc<Source>> {
+        match self {
+            Self::Ready(source) | Self::Changed(source) => Some(source),
+            Self::Missing(_) => None,
+        }
+    }
+}
+
+/// What the passes of one clip came to.
+#[derive(Clone, Debug)]
+pub struct Evaluated {
+    /// The passes that were run.
+    pub passes: Vec<Pass>,
+    /// What they gave.
+    pub evaluation: Arc<Evaluation>,
+    /// Their sum in a few numbers.
+    pub changes: Changes,
+}
+
+/// What has been worked out about one clip.
+#[derive(Clone, Debug, Default)]
+pub struct Findings {
+    /// The snags of the source.
+    pub snags: Option<Arc<Vec<Snag>>>,
+    /// The search was stopped by hand: it does not start again by itself.
+    pub search_is_stopped: bool,
+    /// The result.
+    pub evaluated: Option<Evaluated>,
+    /// Remembers the passes that did not change.
+    pub evaluator: Arc<Mutex<Evaluator>>,
+}
+
+/// An open document.
+#[derive(Debug)]
+pub struct Project {
+    /// Tells answers for this project from those for an older one.
+    pub serial: u64,
+    /// The documents there were.
+    pub history: History,
+    /// The files, in the document's order.
+    pub sources: Vec<SourceState>,
+    /// Where the scene is saved.
+    pub scene_path: Option<PathBuf>,
+    /// For each clip's work.
+    pub findings: Vec<Findings>,
+}
+
+impl Project {
+    /// A new document on files just opened: work on each of their clips.
+    pub fn of_sources(serial: u64, sources: Vec<Arc<Source>>) -> Self {
+        let mut document = Document::default();
+        for (index, source) in sources.iter().enumerate() {
+            document.sources.push(SourceRef { path: source.path.clone(), sha256: source.sha256.clone() });
+            let works = source.clips.iter().enumerate();
+            document.works.extend(works.map(|(clip, _)| ClipWork::new(index, clip, source.clip_label(clip))));
+        }
+        let sources = sources.into_iter().map(SourceState::Ready).collect();
+        Self::of_document(serial, document, sources, None)
+    }
+
+    /// A document read from a scene file, with its files as far as they were found.
+    pub fn of_document(
+        serial: u64,
+        document: Document,
+        sources: Vec<SourceState>,
+        scene_path: Option<PathBuf>,
+    ) -> Self {
+        let findings = document.works.iter().map(|_| Findings::default()).collect();
+        Self { serial, history: History::new(document), sources, scene_path, findings }
+    }
+
+    /// The current document.
+    pub fn document(&self) -> &Arc<Document> {
+        self.history.document()
+    }
+
+    /// The source clip of a work.
+    pub fn source_clip(&self, work: usize) -> Option<&Arc<Clip>> {
+        let work = self.document().works.get(work)?;
+        self.sources.get(work.source)?.source()?.clips.get(work.clip)
+    }
+
+    /// The result of a work as far as it is known: until passes have been run, what they gave before.
+    pub fn result_clip(&self, work: usize) -> Option<&Arc<Clip>> {
+        let evaluated = self.findings.get(work).and_then(|findings| findings.evaluated.as_ref());
+        evaluated.map(|evaluated| &evaluated.evaluation.result).or_else(|| self.source_clip(work))
+    }
+
+    /// A short name for the title bar.
+    pub fn name(&self) -> String {
+        let path = self.scene_path.as_deref().or(self
+            .document()
+            .sources
+            .first()
+            .map(|source| source.path.as_path()));
+        path.map_or_else(|| "Untitled".to_owned(), file_name)
+    }
+
+    /// The first file that is missing or not the same, its index.
+    pub fn trouble(&self) -> Option<usize> {
+        self.sources.iter().position(|source| !matches!(source, SourceState::Ready(_)))
+    }
+}
+
+/// The last part of a path, for people.
+pub fn file_name(path: &Path) -> String {
+    path.file_name().map_or_else(|| path.display().to_string(), |name| name.to_string_lossy().into_owned())
+}
+
+/// A computed value and the clips it was computed from.
+#[derive(Clone, Debug)]
+pub struct FromClips<K, V> {
+    /// The source.
+    pub source: Arc<Clip>,
+    /// The result.
+    pub result: Arc<Clip>,
+    /// Other parameters.
+    pub parameters: K,
+    /// The value.
+    pub value: V,
+}
+
+impl<K: PartialEq, V> FromClips<K, V> {
+    /// Whether it is of these very clips and parameters.
+    pub fn is_of(&self, source: &Arc<Clip>, result: &Arc<Clip>, parameters: &K) -> bool {
+        Arc::ptr_eq(&self.source, source)
+            && Arc::ptr_eq(&self.result, result)
+            && self.parameters == *parameters
+    }
+}
+
+impl<K> FromClips<K, ()> {
+    /// The order together with its answer.
+    pub fn with<V>(self, value: V) -> FromClips<K, V> {
+        FromClips { source: self.source, result: self.result, parameters: self.parameters, value }
+    }
+}
+
+/// The way of a joint's tip through space: a point for each frame.
+pub type Path3 = Vec<glam::DVec3>;
+
+/// Everything that panels read.
+#[derive(Debug, Default)]
+pub struct Bench {
+    /// What is open.
+    pub project: Option<Project>,
+    /// What is looked at.
+    pub session: Session,
+    /// A pass's amount while its slider is dragged.
+    pub preview: Option<(PassId, f64)>,
+    /// The turn map.
+    pub heat: Option<FromClips<HeatKind, Arc<HeatMap>>>,
+    /// The curves of the chosen joint.
+    pub curves: Option<FromClips<(usize, CurveView), Arc<CurveSet>>>,
+    /// The way of the chosen joint's tip.
+    pub tip_path: Option<FromClips<usize, Arc<Path3>>>,
+    models: Models,
+}
+
+/// What panels show of the snags; worked out when what it hangs on has changed.
+#[derive(Debug, Default)]
+struct Models {
+    states: Memo<SnagKey, Arc<Vec<SnagState>>>,
+    rows: Memo<(SnagKey, SnagFilter, SnagOrder), Arc<Vec<SnagRow>>>,
+}
+
+#[derive(Clone, Debug)]
+struct SnagKey {
+    snags: Option<Arc<Vec<Snag>>>,
+    work: usize,
+    revision: Option<(u64, Revision)>,
+}
+
+impl PartialEq for SnagKey {
+    fn eq(&self, other: &Self) -> bool {
+        let same_snags = match (&self.snags, &other.snags) {
+            (Some(own), Some(others)) => Arc::ptr_eq(own, others),
+            (None, None) => true,
+            _ => false,
+        };
+        same_snags && self.work == other.work && self.revision == other.revision
+    }
+}
+
+impl Bench {
+    /// The work that is looked at.
+    pub fn work(&self) -> Option<&ClipWork> {
+        self.project.as_ref()?.document().works.get(self.session.work)
+    }
+
+    /// Its source clip.
+    pub fn source(&self) -> Option<&Arc<Clip>> {
+        self.project.as_ref()?.source_clip(self.session.work)
+    }
+
+    /// Its result as far as it is known.
+    pub fn result(&self) -> Option<&Arc<Clip>> {
+        self.project.as_ref()?.result_clip(self.session.work)
+    }
+
+    /// What has been worked out about it.
+    pub fn findings(&self) -> Option<&Findings> {
+        self.project.as_ref()?.findings.get(self.session.work)
+    }
+
+    /// Its snags; none while they are being looked for.
+    pub fn snags(&self) -> &[Snag] {
+        self.findings().and_then(|findings| findings.snags.as_ref()).map_or(&[], |snags| snags.as_slice())
+    }
+
+    /// The chosen snag.
+    pub fn chosen_snag(&self) -> Option<&Snag> {
+        let mark = self.session.snag?;
+        self.snags().iter().find(|snag| SnagMark::of(snag) == mark)
+    }
+
+    /// The passes to run: those of the document, with the amount that is being dragged.
+    pub fn passes(&self) -> Vec<Pass> {
+        let mut passes = self.work().map(|work| work.passes.clone()).unwrap_or_default();
+        if let Some((id, amount)) = self.preview {
+            for pass in passes.iter_mut().filter(|pass| pass.id == id) {
+                let PassStep::Mend(mend) = &mut pass.step;
+                mend.amount = amount;
+            }
+        }
+        passes
+    }
+
+    /// Open snags that may be mended unasked.
+    pub fn safe_open_snags(&mut self) -> Vec<Snag> {
+        self.open_snags(|snag| snag.safe)
+    }
+
+    /// Open snags of some sort.
+    pub fn open_snags(&mut self, wanted: impl Fn(&Snag) -> bool) -> Vec<Snag> {
+        let states = self.snag_states();
+        let both = self.snags().iter().zip(states.iter());
+        both.filter(|(snag, state)| **state == SnagState::Open && wanted(snag))
+            .map(|(snag, _)| snag.clone())
+            .collect()
+    }
+
+    fn snag_key(&self) -> SnagKey {
+        SnagKey {
+            snags: self.findings().and_then(|findings| findings.snags.clone()),
+            work: self.session.work,
+            revision: self.project.as_ref().map(|project| (project.serial, project.history.revision())),
+        }
+    }
+
+    /// What has been decided about each snag, in their order.
+    pub fn snag_states(&mut self) -> Arc<Vec<SnagState>> {
+        let key = self.snag_key();
+        let work = self.work().cloned();
+        let states = self.models.states.get_or_compute(key, |key| {
+            let snags = key.snags.as_ref().map_or(&[][..], |snags| snags.as_slice());
+            Arc::new(work.map(|work| snag_states(snags, &work)).unwrap_or_default())
+        });
+        Arc::clone(states)
+    }
+
+    /// The rows of the snag table.
+    pub fn snag_rows(&mut self) -> Arc<Vec<SnagRow>> {
+        let states = self.snag_states();
+        let clip = self.source().cloned();
+        let key = (self.snag_key(), self.session.filter.clone(), self.session.order);
+        let rows = self.models.rows.get_or_compute(key, |(key, filter, order)| {
+            let snags = key.snags.as_ref().map_or(&[][..], |snags| snags.as_slice());
+            Arc::new(clip.map(|clip| snag_rows(&clip, snags, &states, filter, *order)).unwrap_or_default())
+        });
+        Arc::clone(rows)
+    }
+
+    /// What can be done now.
+    pub fn situation(&mut self, is_finding: bool, is_light: bool) -> Situation {
+        let states = self.snag_states();
+        let safe_snags = self
+            .snags()
+            .iter()
+            .zip(states.iter())
+            .filter(|(snag, state)| snag.safe && **state == SnagState::Open)
+            .count();
+        let session = &self.session;
+        let history = self.project.as_ref().map(|project| &project.history);
+        let mark = self.chosen_snag().map(SnagMark::of);
+        let work = self.work();
+        Situation {
+            has_document: self.project.is_some(),
+            has_clip: self.source().is_some(),
+            has_several_clips: self
+                .project
+                .as_ref()
+                .is_some_and(|project| project.document().works.len() > 1),
+            has_trouble: self.project.as_ref().is_some_and(|project| project.trouble().is_some()),
+            undo: history.and_then(|history| history.undo_label()).map(str::to_owned),
+            redo: history.and_then(|history| history.redo_label()).map(str::to_owned),
+            has_joint: session.joint.is_some(),
+            snags: self.snags().len(),
+            safe_snags,
+            has_snag: mark.is_some(),
+            snag_is_mended: mark.zip(work).is_some_and(|(mark, work)| work.mends(mark)),
+            snag_is_left: mark.zip(work).is_some_and(|(mark, work)| work.leaves(mark)),
+            is_finding,
+            is_playing: session.playback.is_playing,
+            is_looping: session.playback.is_looping,
+            has_loop_range: session.playback.range.is_some(),
+            follows: session.follows,
+            is_parallel: session.camera.lens == crate::raster::Lens::Orthographic,
+            shows_before: session.shows_before,
+            shows_source_alone: session.shows_source_alone(),
+            is_light,
+            worst_first: session.worst_first,
+            curve_view: Some(session.curve_view),
+            heat_kind: Some(session.heat_kind),
+        }
+    }
+}

@@ -1,0 +1,629 @@
+//! Everything a person can ask for, in one table that menus, shortcuts and help read.
+
+use std::path::PathBuf;
+
+use egui::{Key, KeyboardShortcut, Modifiers};
+
+use crate::raster::Camera;
+use crate::scene::{Edit, PassId};
+
+use super::file_picker::Purpose;
+use super::jobs::Slot;
+use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeWindow};
+
+/// An action without parameters: an entry of the table.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
+#[expect(missing_docs, reason = "each has its label and its tooltip in the table below")]
+pub enum Action {
+    Open,
+    OpenPath,
+    OpenDemo,
+    ChooseClip,
+    Save,
+    SaveAs,
+    Export,
+    Relocate,
+    Quit,
+    Undo,
+    Redo,
+    History,
+    Fit,
+    Follow,
+    Parallel,
+    LookXy,
+    LookZx,
+    LookYz,
+    LookXyBack,
+    LookZxBack,
+    LookYzBack,
+    PlaneAngles,
+    SwingTwist,
+    FileNumbers,
+    TurnRate,
+    HeatTurnRate,
+    HeatChange,
+    WorstFirst,
+    WholeTime,
+    NearerTime,
+    FartherTime,
+    ShowBefore,
+    SourceAlone,
+    Light,
+    PreviousJoint,
+    NextJoint,
+    FindAgain,
+    StopFinding,
+    PreviousSnag,
+    NextSnag,
+    Mend,
+    MendKind,
+    MendSafe,
+    Leave,
+    TakeBack,
+    Play,
+    StepBack,
+    StepForward,
+    PreviousKey,
+    NextKey,
+    First,
+    Last,
+    Loop,
+    LoopFrom,
+    LoopTo,
+    LoopAll,
+    Slower,
+    Faster,
+    Shortcuts,
+    WhatsNew,
+    About,
+}
+
+/// The menus, from left to right.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[expect(missing_docs, reason = "the names say it")]
+pub enum Menu {
+    File,
+    Edit,
+    View,
+    Snags,
+    Play,
+    Help,
+}
+
+impl Menu {
+    /// All menus in order.
+    pub const ALL: [Self; 6] = [Self::File, Self::Edit, Self::View, Self::Snags, Self::Play, Self::Help];
+
+    /// Its title.
+    pub const fn title(self) -> &'static str {
+        match self {
+            Self::File => "File",
+            Self::Edit => "Edit",
+            Self::View => "View",
+            Self::Snags => "Snags",
+            Self::Play => "Play",
+            Self::Help => "Help",
+        }
+    }
+}
+
+/// What decides whether an action can be done and whether it is on.
+#[derive(Clone, Debug, Default, PartialEq)]
+#[expect(clippy::struct_excessive_bools, reason = "plain facts, each asked for by its own name")]
+pub struct Situation {
+    /// A document is open.
+    pub has_document: bool,
+    /// A clip with its source is there.
+    pub has_clip: bool,
+    /// The document has several clips.
+    pub has_several_clips: bool,
+    /// A source is missing or not the one that was saved.
+    pub has_trouble: bool,
+    /// What undo would take back.
+    pub undo: Option<String>,
+    /// What redo would bring back.
+    pub redo: Option<String>,
+    /// A joint is chosen.
+    pub has_joint: bool,
+    /// How many snags there are.
+    pub snags: usize,
+    /// How many open ones may be mended unasked.
+    pub safe_snags: usize,
+    /// A snag is chosen.
+    pub has_snag: bool,
+    /// The chosen snag is mended.
+    pub snag_is_mended: bool,
+    /// The chosen snag is left.
+    pub snag_is_left: bool,
+    /// Snags are being looked for.
+    pub is_finding: bool,
+    /// The clip plays.
+    pub is_playing: bool,
+    /// Play starts over at the end.
+    pub is_looping: bool,
+    /// Only a part is played.
+    pub has_loop_range: bool,
+    /// The camera goes with the figure.
+    pub follows: bool,
+    /// The camera shows depth in parallel.
+    pub is_parallel: bool,
+    /// The source is drawn as well.
+    pub shows_before: bool,
+    /// The source is drawn instead of the result.
+    pub shows_source_alone: bool,
+    /// The window is light.
+    pub is_light: bool,
+    /// The turn map has the worst joint on top.
+    pub worst_first: bool,
+    /// What the curves show.
+    pub curve_view: Option<CurveView>,
+    /// What the turn map shows.
+    pub heat_kind: Option<HeatKind>,
+}
+
+/// One entry of the table.
+#[derive(Clone, Copy, Debug)]
+pub struct Entry {
+    /// What it does.
+    pub action: Action,
+    /// Where it stands.
+    pub menu: Menu,
+    /// A line is drawn above it.
+    pub starts_group: bool,
+    /// Its words.
+    pub label: &'static str,
+    /// What it does, in a sentence.
+    pub tooltip: &'static str,
+    /// Its keys.
+    pub shortcut: Option<KeyboardShortcut>,
+    /// Whether it can be done.
+    pub is_available: fn(&Situation) -> bool,
+    /// Whether it is on, for entries that are switches.
+    pub is_on: Option<fn(&Situation) -> bool>,
+}
+
+const fn plain(key: Key) -> Option<KeyboardShortcut> {
+    Some(KeyboardShortcut::new(Modifiers::NONE, key))
+}
+
+const fn ctrl(key: Key) -> Option<KeyboardShortcut> {
+    Some(KeyboardShortcut::new(Modifiers::COMMAND, key))
+}
+
+const fn ctrl_shift(key: Key) -> Option<KeyboardShortcut> {
+    Some(KeyboardShortcut::new(Modifiers::COMMAND.plus(Modifiers::SHIFT), key))
+}
+
+const fn shift(key: Key) -> Option<KeyboardShortcut> {
+    Some(KeyboardShortcut::new(Modifiers::SHIFT, key))
+}
+
+const fn alt(key: Key) -> Option<KeyboardShortcut> {
+    Some(KeyboardShortcut::new(Modifiers::ALT, key))
+}
+
+const fn entry(
+    menu: Menu,
+    action: Action,
+    label: &'static str,
+    tooltip: &'static str,
+    shortcut: Option<KeyboardShortcut>,
+    is_available: fn(&Situation) -> bool,
+) -> Entry {
+    Entry { action, menu, starts_group: false, label, tooltip, shortcut, is_available, is_on: None }
+}
+
+impl Entry {
+    const fn group(self) -> Self {
+        Self { starts_group: true, ..self }
+    }
+
+    const fn switch(self, is_on: fn(&Situation) -> bool) -> Self {
+        Self { is_on: Some(is_on), ..self }
+    }
+}
+
+const ALWAYS: fn(&Situation) -> bool = |_| true;
+const DOCUMENT: fn(&Situation) -> bool = |now| now.has_document;
+const CLIP: fn(&Situation) -> bool = |now| now.has_clip;
+const JOINT: fn(&Situation) -> bool = |now| now.has_clip && now.has_joint;
+const SNAG: fn(&Situation) -> bool = |now| now.has_snag;
+const SNAGS: fn(&Situation) -> bool = |now| now.snags > 0;
+
+/// The table.
+pub const TABLE: &[Entry] = &{
+    use Action as A;
+    use Menu::{Edit as E, File as F, Help as H, Play as P, Snags as S, View as V};
+    [
+        entry(
+            F,
+            A::Open,
+            "Open…",
+            "Choose clips (.gltf .glb .bvh .csv) or a scene (.ron)",
+            ctrl(Key::O),
+            ALWAYS,
+        ),
+        entry(F, A::OpenPath, "Open path…", "Type the path of a clip or scene", ctrl_shift(Key::O), ALWAYS),
+        entry(F, A::OpenDemo, "Open the demo", "The night ferry: a clip with planted snags", None, ALWAYS),
+        entry(
+            F,
+            A::ChooseClip,
+            "Choose clip…",
+            "Work on another clip of the open files",
+            ctrl(Key::P),
+            |now| now.has_several_clips,
+        ),
+        entry(
+            F,
+            A::Save,
+            "Save scene",
+            "Write the passes and decisions to the scene file",
+            ctrl(Key::S),
+            DOCUMENT,
+        )
+        .group(),
+        entry(F, A::SaveAs, "Save scene as…", "Write a new scene file", ctrl_shift(Key::S), DOCUMENT),
+        entry(
+            F,
+            A::Export,
+            "Export clip…",
+            "Write the corrected curves, with a summary of what changed",
+            ctrl(Key::E),
+            CLIP,
+        ),
+        entry(
+            F,
+            A::Relocate,
+            "Find source again…",
+            "The source file is missing or is no longer the same: name the one to use",
+            None,
+            |now| now.has_trouble,
+        ),
+        entry(F, A::Quit, "Quit", "Close the window", ctrl(Key::Q), ALWAYS).group(),
+        entry(E, A::Undo, "Undo", "Take back the last change", ctrl(Key::Z), |now| now.undo.is_some()),
+        entry(E, A::Redo, "Redo", "Bring back what was undone", ctrl_shift(Key::Z), |now| now.redo.is_some()),
+        entry(E, A::History, "History…", "All changes since the file was opened", ctrl(Key::H), DOCUMENT)
+            .group(),
+        entry(V, A::Fit, "Fit figure", "Bring the whole figure into view", ctrl(Key::Num7), CLIP),
+        entry(
+            V,
+            A::Follow,
+            "Follow figure",
+            "The view goes along when the figure walks",
+            ctrl(Key::Num8),
+            CLIP,
+        )
+        .switch(|now| now.follows),
+        entry(
+            V,
+            A::Parallel,
+            "Parallel view",
+            "No perspective: lengths can be compared",
+            ctrl(Key::Num9),
+            CLIP,
+        )
+        .switch(|now| now.is_parallel),
+        entry(V, A::LookXy, "Look at plane xy", "Straight view of plane xy", ctrl(Key::Num1), CLIP).group(),
+        entry(
+            V,
+            A::LookZx,
+            "Look at plane zx",
+            "Straight view of plane zx, from above",
+            ctrl(Key::Num2),
+            CLIP,
+        ),
+        entry(V, A::LookYz, "Look at plane yz", "Straight view of plane yz", ctrl(Key::Num3), CLIP),
+        entry(
+            V,
+            A::LookXyBack,
+            "Look at xy from behind",
+            "The other side of plane xy",
+            ctrl(Key::Num4),
+            CLIP,
+        ),
+        entry(V, A::LookZxBack, "Look at zx from below", "The other side of plane zx", ctrl(Key::Num5), CLIP),
+        entry(
+            V,
+            A::LookYzBack,
+            "Look at yz from behind",
+            "The other side of plane yz",
+            ctrl(Key::Num6),
+            CLIP,
+        ),
+        entry(
+            V,
+            A::PlaneAngles,
+            "Curves of plane angles",
+            CurveView::PlaneAngles.explanation(),
+            alt(Key::Num1),
+            CLIP,
+        )
+        .switch(|now| matches!(now.curve_view, Some(CurveView::PlaneAngles)))
+        .group(),
+        entry(
+            V,
+            A::SwingTwist,
+            "Curves of swing and twist",
+            CurveView::SwingTwist.explanation(),
+            alt(Key::Num2),
+            CLIP,
+        )
+        .switch(|now| matches!(now.curve_view, Some(CurveView::SwingTwist))),
+        entry(
+            V,
+            A::FileNumbers,
+            "Curves of the file's own numbers",
+            CurveView::FileNumbers.explanation(),
+            alt(Key::Num3),
+            CLIP,
+        )
+        .switch(|now| matches!(now.curve_view, Some(CurveView::FileNumbers))),
+        entry(V, A::TurnRate, "Curve of turn rate", CurveView::TurnRate.explanation(), alt(Key::Num4), CLIP)
+            .switch(|now| matches!(now.curve_view, Some(CurveView::TurnRate))),
+        entry(V, A::HeatTurnRate, "Map turn rate", "Colour = how fast a joint turns", alt(Key::Num5), CLIP)
+            .switch(|now| matches!(now.heat_kind, Some(HeatKind::TurnRate)))
+            .group(),
+        entry(
+            V,
+            A::HeatChange,
+            "Map change",
+            "Colour = how far the result is from the source",
+            alt(Key::Num6),
+            CLIP,
+        )
+        .switch(|now| matches!(now.heat_kind, Some(HeatKind::Change))),
+        entry(
+            V,
+            A::WorstFirst,
+            "Worst joint first",
+            "Order the turn map by its hottest rows",
+            alt(Key::Num7),
+            CLIP,
+        )
+        .switch(|now| now.worst_first),
+        entry(V, A::WholeTime, "Show all time", "The whole clip from left to right", alt(Key::Num0), CLIP)
+            .group(),
+        entry(
+            V,
+            A::NearerTime,
+            "Zoom in on time",
+            "Half as long a stretch, around the playhead",
+            alt(Key::ArrowUp),
+            CLIP,
+        ),
+        entry(
+            V,
+            A::FartherTime,
+            "Zoom out of time",
+            "Twice as long a stretch, around the playhead",
+            alt(Key::ArrowDown),
+            CLIP,
+        ),
+        entry(
+            V,
+            A::ShowBefore,
+            "Show source as well",
+            "The source in thin grey beside the result",
+            ctrl(Key::G),
+            CLIP,
+        )
+        .switch(|now| now.shows_before)
+        .group(),
+        entry(
+            V,
+            A::SourceAlone,
+            "Show source alone",
+            "The source in place of the result. Hold Ctrl+B to look for a moment",
+            ctrl_shift(Key::B),
+            CLIP,
+        )
+        .switch(|now| now.shows_source_alone),
+        entry(V, A::PreviousJoint, "Previous joint", "Choose the joint above", ctrl(Key::ArrowUp), CLIP)
+            .group(),
+        entry(V, A::NextJoint, "Next joint", "Choose the joint below", ctrl(Key::ArrowDown), CLIP),
+        entry(V, A::Light, "Light window", "Dark on light", ctrl(Key::D), ALWAYS)
+            .switch(|now| now.is_light)
+            .group(),
+        entry(S, A::FindAgain, "Find again", "Look for snags in the source anew", plain(Key::F5), CLIP),
+        entry(S, A::StopFinding, "Stop finding", "Stop looking for snags", shift(Key::F5), |now| {
+            now.is_finding
+        }),
+        entry(S, A::PreviousSnag, "Previous snag", "Jump to the snag above", shift(Key::F8), SNAGS).group(),
+        entry(S, A::NextSnag, "Next snag", "Jump to the snag below", plain(Key::F8), SNAGS),
+        entry(S, A::Mend, "Mend", "Mend the chosen snag", ctrl(Key::Enter), |now| {
+            now.has_snag && !now.snag_is_mended
+        })
+        .group(),
+        entry(
+            S,
+            A::MendKind,
+            "Mend all of this kind",
+            "Mend every open snag of the chosen one's kind",
+            ctrl_shift(Key::Enter),
+            SNAG,
+        ),
+        entry(
+            S,
+            A::MendSafe,
+            "Mend all safe",
+            "Mend every open snag whose mend needs no judgement",
+            ctrl(Key::M),
+            |now| now.safe_snags > 0,
+        ),
+        entry(
+            S,
+            A::TakeBack,
+            "Take mend back",
+            "The chosen snag is open again",
+            ctrl(Key::Backspace),
+            |now| now.snag_is_mended,
+        ),
+        entry(S, A::Leave, "Leave", "The chosen snag is meant, or not worth it", ctrl(Key::Delete), SNAG)
+            .switch(|now| now.snag_is_left),
+        entry(P, A::Play, "Play", "Play or pause", plain(Key::Space), CLIP).switch(|now| now.is_playing),
+        entry(P, A::StepBack, "Frame back", "One frame back", plain(Key::ArrowLeft), CLIP).group(),
+        entry(P, A::StepForward, "Frame forward", "One frame forward", plain(Key::ArrowRight), CLIP),
+        entry(
+            P,
+            A::PreviousKey,
+            "Previous key",
+            "To the chosen joint's key before",
+            ctrl(Key::ArrowLeft),
+            JOINT,
+        ),
+        entry(P, A::NextKey, "Next key", "To the chosen joint's key after", ctrl(Key::ArrowRight), JOINT),
+        entry(P, A::First, "To the start", "To the first frame", plain(Key::Home), CLIP),
+        entry(P, A::Last, "To the end", "To the last frame", plain(Key::End), CLIP),
+        entry(P, A::Loop, "Loop", "Start over at the end", ctrl(Key::L), CLIP)
+            .switch(|now| now.is_looping)
+            .group(),
+        entry(
+            P,
+            A::LoopFrom,
+            "Loop from here",
+            "The loop starts at the playhead",
+            ctrl(Key::OpenBracket),
+            CLIP,
+        ),
+        entry(P, A::LoopTo, "Loop to here", "The loop ends at the playhead", ctrl(Key::CloseBracket), CLIP),
+        entry(P, A::LoopAll, "Loop whole clip", "Forget the loop range", ctrl(Key::Backslash), |now| {
+            now.has_loop_range
+        }),
+        entry(P, A::Slower, "Slower", "Play at the next slower speed", ctrl(Key::Comma), CLIP).group(),
+        entry(P, A::Faster, "Faster", "Play at the next faster speed", ctrl(Key::Period), CLIP),
+        entry(H, A::Shortcuts, "Shortcuts", "All actions and their keys", plain(Key::F1), ALWAYS),
+        entry(H, A::WhatsNew, "What's new", "What has changed from version to version", None, ALWAYS),
+        entry(H, A::About, "About Turnwright", "Version, licences and cautions", None, ALWAYS),
+    ]
+};
+
+/// Keys that do the same as an entry's own shortcut.
+pub const MORE_KEYS: &[(KeyboardShortcut, Action)] =
+    &[(KeyboardShortcut::new(Modifiers::COMMAND, Key::Y), Action::Redo)];
+
+/// Held down, these show the source in place of the result.
+pub const HOLD_FOR_SOURCE: KeyboardShortcut = KeyboardShortcut::new(Modifiers::COMMAND, Key::B);
+
+impl Action {
+    /// Its entry.
+    ///
+    /// # Panics
+    /// Never: a test sees to it that every action has one.
+    pub fn entry(self) -> &'static Entry {
+        TABLE.iter().find(|entry| entry.action == self).unwrap_or(&TABLE[0])
+    }
+}
+
+/// What panels ask for. It is done between frames, so that no panel sees a half-changed world.
+#[derive(Clone, Debug)]
+pub enum Command {
+    /// An entry of the table.
+    Do(Action),
+    /// Change the document.
+    Edit(Edit),
+    /// Work on another clip.
+    ShowClip(usize),
+    /// Choose a joint, or none.
+    ChooseJoint(Option<usize>),
+    /// Choose a snag and go there.
+    ChooseSnag(usize),
+    /// Move the playhead, seconds; onto the nearest frame.
+    Scrub(f64),
+    /// Show another stretch of time.
+    ShowTime(TimeWindow),
+    /// Play between these times only.
+    SetLoopRange(Option<(f64, f64)>),
+    /// Play at this many times the true speed.
+    SetSpeed(f64),
+    /// Which snags are listed.
+    SetFilter(SnagFilter),
+    /// How they are ordered.
+    SetOrder(SnagOrder),
+    /// Hide or show what hangs below a joint.
+    Fold(usize),
+    /// Take a part of a pass while a slider is dragged; nothing is recorded until it is let go.
+    PreviewAmount(PassId, f64),
+    /// Go to a step of the history.
+    GoToStep(usize),
+    /// Take away the message on top.
+    Dismiss(usize),
+    /// Set the camera.
+    SetCamera(Camera),
+    /// The camera has been brought to the figure.
+    FigureIsFitted {
+        /// The camera.
+        camera: Camera,
+        /// Whether it goes along.
+        follows: bool,
+    },
+    /// The pointer is over a joint.
+    HoverJoint(usize),
+    /// Open files.
+    OpenFiles(Vec<PathBuf>),
+    /// Save the scene there.
+    SaveTo(PathBuf),
+    /// Export the clip there.
+    ExportTo(PathBuf),
+    /// Use this file as a source.
+    RelocateTo(usize, PathBuf),
+    /// Ask with the desktop's own dialog.
+    Browse(Purpose),
+    /// Take away the dialog.
+    CloseDialog,
+    /// Save, then do what was asked for.
+    SaveAndGoOn,
+    /// Do what was asked for without saving.
+    DiscardAndGoOn,
+    /// Stop a job.
+    Cancel(Slot),
+}
+
+#[cfg(test)]
+mod tests {
+    use std::collections::BTreeSet;
+
+    use super::*;
+
+    #[test]
+    fn every_action_has_one_entry_with_words() {
+        let mut seen = BTreeSet::new();
+        for entry in TABLE {
+            assert!(seen.insert(entry.action), "{:?} stands twice", entry.action);
+            assert_eq!(entry.action.entry().label, entry.label);
+            assert!(!entry.label.is_empty() && entry.tooltip.len() > 3, "{:?}", entry.action);
+            assert!(!entry.tooltip.ends_with('.') && !entry.label.ends_with('.'), "{}", entry.tooltip);
+        }
+    }
+
+    #[test]
+    fn no_two_entries_share_keys() {
+        let own = TABLE.iter().filter_map(|entry| entry.shortcut.map(|shortcut| (shortcut, entry.action)));
+        let mut seen: Vec<(KeyboardShortcut, Action)> = Vec::new();
+        for (shortcut, action) in own.chain(MORE_KEYS.iter().copied()) {
+            let twin = seen.iter().find(|(other, _)| *other == shortcut);
+            assert!(twin.is_none(), "{action:?} and {twin:?}");
+            assert_ne!(shortcut, HOLD_FOR_SOURCE);
+            seen.push((shortcut, action));
+        }
+    }
+
+    #[test]
+    fn letters_and_digits_come_with_a_modifier() {
+        for entry in TABLE {
+            let Some(KeyboardShortcut { modifiers, logical_key }) = entry.shortcut else { continue };
+            let is_letter = logical_key.name().chars().count() == 1;
+            assert!(!is_letter || modifiers.any(), "{:?}", entry.action);
+        }
+    }
+
+    #[test]
+    fn without_a_document_only_what_needs_none_is_on_offer() {
+        let nothing = Situation::default();
+        let offered: Vec<Action> =
+            TABLE.iter().filter(|entry| (entry.is_available)(&nothing)).map(|entry| entry.action).collect();
+        use Action as A;
+        let expected =
+            [A::Open, A::OpenPath, A::OpenDemo, A::Quit, A::Light, A::Shortcuts, A::WhatsNew, A::About];
+        assert_eq!(offered, expected);
+    }
+}

@@ -1,0 +1,342 @@
+//! The answers of jobs, taken in between frames.
+
+use std::path::PathBuf;
+use std::sync::Arc;
+
+use egui::Context;
+
+use super::super::bench::{Evaluated, FromClips, Path3, Project, SourceState, file_name};
+use super::super::file_picker::{Picked, Purpose};
+use super::super::panels::{Dialog, Form, Level, Message};
+use super::super::view_models::{CurveSet, CurveView, HeatKind, HeatMap};
+use super::super::window::Window;
+use super::files::{Exported, OpenedScene};
+use crate::exchange::Source;
+use crate::scene::{Edit, Revision, SourceRef};
+use crate::snag::Snag;
+
+/// What a job came to.
+#[derive(Debug)]
+pub(crate) enum Answer {
+    /// Clips were read, or not.
+    Opened {
+        /// The files, or why not.
+        result: Result<Vec<Arc<Source>>, String>,
+        /// The clip that was asked for by name.
+        clip: Option<String>,
+    },
+    /// A scene was read, or not.
+    SceneOpened(Result<Box<OpenedScene>, String>),
+    /// Snags were found.
+    Surveyed {
+        /// For which project.
+        serial: u64,
+        /// For which clip.
+        work: usize,
+        /// All of them.
+        snags: Arc<Vec<Snag>>,
+    },
+    /// Passes were run.
+    Evaluated {
+        /// For which project.
+        serial: u64,
+        /// For which clip.
+        work: usize,
+        /// The result.
+        evaluated: Box<Evaluated>,
+    },
+    /// The turn map.
+    Heat(FromClips<HeatKind, Arc<HeatMap>>),
+    /// The curves.
+    Curves(FromClips<(usize, CurveView), Arc<CurveSet>>),
+    /// The way of a tip.
+    TipPath(FromClips<usize, Arc<Path3>>),
+    /// The scene was written, or not.
+    Saved {
+        /// For which project.
+        serial: u64,
+        /// The document that was saved.
+        revision: Revision,
+        /// Where.
+        path: PathBuf,
+        /// Why not.
+        result: Result<(), String>,
+    },
+    /// Clips were written, or not.
+    Exported(Result<Box<Exported>, String>),
+    /// A source was found anew, or not.
+    Relocated {
+        /// For which project.
+        serial: u64,
+        /// Which source.
+        index: usize,
+        /// The file, or why not.
+        result: Result<Arc<Source>, String>,
+    },
+}
+
+impl Window {
+    /// Takes in what has come.
+    pub(in super::super) fn take_answers(&mut self, ctx: &Context) {
+        while let Some(picked) = self.picker.answer() {
+            self.take_picked(picked);
+        }
+        // Without threads an answer may lead to a next order that is answered at once.
+        for _ in 0..8 {
+            let answers = self.jobs.drain();
+            if answers.is_empty() {
+                break;
+            }
+            for answer in answers {
+                self.take_answer(answer, ctx);
+            }
+            self.order_work();
+            ctx.request_repaint();
+        }
+    }
+
+    fn take_answer(&mut self, answer: Answer, ctx: &Context) {
+        match answer {
+            Answer::Opened { result, clip } => self.take_opened(result, clip.as_deref()),
+            Answer::SceneOpened(result) => self.take_scene(result),
+            Answer::Surveyed { serial, work, snags } => {
+                if let Some(findings) =
+                    self.project_mut(serial).and_then(|project| project.findings.get_mut(work))
+                {
+                    findings.snags = Some(snags);
+                }
+            }
+            Answer::Evaluated { serial, work, evaluated } => {
+                if let Some(findings) =
+                    self.project_mut(serial).and_then(|project| project.findings.get_mut(work))
+                {
+                    findings.evaluated = Some(*evaluated);
+                }
+            }
+            Answer::Heat(heat) => self.bench.heat = Some(heat),
+            Answer::Curves(curves) => self.bench.curves = Some(curves),
+            Answer::TipPath(path) => self.bench.tip_path = Some(path),
+            Answer::Saved { serial, revision, path, result } => {
+                self.take_saved(serial, revision, path, result, ctx)
+            }
+            Answer::Exported(result) => self.take_exported(result),
+            Answer::Relocated { serial, index, result } => self.take_relocated(serial, index, result),
+        }
+    }
+
+    fn project_mut(&mut self, serial: u64) -> Option<&mut Project> {
+        self.bench.project.as_mut().filter(|project| project.serial == serial)
+    }
+
+    fn take_opened(&mut self, result: Result<Vec<Arc<Source>>, String>, clip: Option<&str>) {
+        let sources = match result {
+            Ok(sources) => sources,
+            Err(error) => {
+                self.tell(Message::error(error));
+                return;
+            }
+        };
+        if let Some(empty) = sources.iter().find(|source| source.clips.is_empty()) {
+            let path = empty.path.display();
+            self.tell(Message::error(format!(
+                "{path}: expected a clip, found a file without animation; nothing was opened"
+            )));
+            return;
+        }
+        let wanted = match clip.map(|text| (text, sources.first().and_then(|source| source.find_clip(text))))
+        {
+            Some((_, Some(index))) => Some(index),
+            Some((text, None)) => {
+                self.tell(Message::error(format!("expected one of the file's clips, found `{text}`")));
+                None
+            }
+            None => None,
+        };
+        let notes: Vec<(String, Vec<String>)> = sources
+            .iter()
+            .filter(|source| !source.notes.is_empty())
+            .map(|source| (file_name(&source.path), source.notes.iter().map(ToString::to_string).collect()))
+            .collect();
+        let project = Project::of_sources(self.take_serial(), sources);
+        let several = project.document().works.len() > 1 && wanted.is_none();
+        self.show_project(project, wanted.unwrap_or(0));
+        self.tell_notes(notes);
+        self.dialog = several.then_some(Dialog::ChooseClip);
+    }
+
+    pub(super) fn take_serial(&mut self) -> u64 {
+        self.next_serial += 1;
+        self.next_serial
+    }
+
+    pub(super) fn show_project(&mut self, project: Project, work: usize) {
+        self.messages.retain(|message| message.level == Level::Done);
+        self.dialog = None;
+        self.bench.heat = None;
+        self.bench.curves = None;
+        self.bench.tip_path = None;
+        self.bench.preview = None;
+        let clip = project.source_clip(work).cloned();
+        self.bench.project = Some(project);
+        self.bench.session.turn_to(work, clip.as_deref());
+    }
+
+    fn tell_notes(&mut self, notes: Vec<(String, Vec<String>)>) {
+        for (file, details) in notes {
+            let text = match details.as_slice() {
+                [only] => format!("{file}: {only}"),
+                several => format!(
+                    "{file}: {} things are odd in this file, the first: {}",
+                    several.len(),
+                    several[0]
+                ),
+            };
+            self.tell(Message { details, ..Message::note(text) });
+        }
+    }
+
+    fn take_scene(&mut self, result: Result<Box<OpenedScene>, String>) {
+        let opened = match result {
+            Ok(opened) => *opened,
+            Err(error) => {
+                self.tell(Message::error(error));
+                return;
+            }
+        };
+        let project =
+            Project::of_document(self.take_serial(), opened.document, opened.sources, Some(opened.path));
+        let trouble: Vec<Message> = project
+            .sources
+            .iter()
+            .zip(&project.document().sources)
+            .filter_map(|(state, known)| {
+                let text = match state {
+                    SourceState::Ready(_) => return None,
+                    SourceState::Missing(why) => why.clone(),
+                    SourceState::Changed(_) => {
+                        format!("{}: this file has changed since the scene was saved", known.path.display())
+                    }
+                };
+                Some(Message {
+                    offer: Some(super::super::commands::Action::Relocate),
+                    ..Message::error(text)
+                })
+            })
+            .collect();
+        self.show_project(project, 0);
+        for message in trouble {
+            self.tell(message);
+        }
+        if !opened.lost.is_empty() {
+            let text =
+                format!("joints of the scene that its source no longer has: {}", opened.lost.join(", "));
+            self.tell(Message::error(text));
+        }
+    }
+
+    fn take_saved(
+        &mut self,
+        serial: u64,
+        revision: Revision,
+        path: PathBuf,
+        result: Result<(), String>,
+        ctx: &Context,
+    ) {
+        if let Err(error) = result {
+            self.after_save = None;
+            match &self.dialog {
+                Some(Dialog::SavePath) => self.form.error = Some(error),
+                _ => self.tell(Message::error(error)),
+            }
+            return;
+        }
+        let Some(project) = self.project_mut(serial) else { return };
+        project.scene_path = Some(path.clone());
+        if project.history.revision() == revision {
+            project.history.mark_saved();
+        }
+        if self.dialog == Some(Dialog::SavePath) {
+            self.dialog = None;
+        }
+        match self.after_save.take() {
+            Some(then) => self.go_on(then, ctx),
+            None => self.tell(Message::done(format!("Saved {}", path.display()))),
+        }
+    }
+
+    fn take_exported(&mut self, result: Result<Box<Exported>, String>) {
+        match result {
+            Ok(exported) => {
+                self.dialog = None;
+                let beside = exported.beside.as_ref().map(|path| format!(" and {}", file_name(path)));
+                let text = format!(
+                    "Exported {}{}: {}",
+                    exported.path.display(),
+                    beside.unwrap_or_default(),
+                    exported.summary
+                );
+                self.tell(Message { details: exported.notes, ..Message::done(text) });
+            }
+            Err(error) if self.dialog == Some(Dialog::Export) => self.form.error = Some(error),
+            Err(error) => self.tell(Message::error(error)),
+        }
+    }
+
+    fn take_relocated(&mut self, serial: u64, index: usize, result: Result<Arc<Source>, String>) {
+        let source = match result {
+            Ok(source) => source,
+            Err(error) => {
+                self.form.error = Some(error);
+                return;
+            }
+        };
+        let Some(project) = self.project_mut(serial) else { return };
+        let works = &project.document().works;
+        let needed =
+            works.iter().filter(|work| work.source == index).map(|work| work.clip + 1).max().unwrap_or(0);
+        if source.clips.len() < needed {
+            let found = source.clips.len();
+            self.form.error = Some(format!(
+                "{}: expected at least {needed} clips, found {found}; this is another file",
+                source.path.display()
+            ));
+            return;
+        }
+        let to = SourceRef { path: source.path.clone(), sha256: source.sha256.clone() };
+        if let Some(state) = project.sources.get_mut(index) {
+            *state = SourceState::Ready(source);
+        }
+        for findings in &mut project.findings {
+            *findings = super::super::bench::Findings::default();
+        }
+        self.asked.survey = None;
+        self.edit(&Edit::Relocate { source: index, to });
+        self.dialog = None;
+        self.messages.retain(|message| message.offer.is_none());
+        let work = self.bench.session.work;
+        let clip = self.bench.source().cloned();
+        self.bench.session.turn_to(work, clip.as_deref());
+    }
+
+    fn take_picked(&mut self, picked: Picked) {
+        let first = picked.paths.first().cloned();
+        match (picked.purpose, first) {
+            (Purpose::Open, Some(_)) => {
+                self.commands.push(super::super::commands::Command::OpenFiles(picked.paths))
+            }
+            (Purpose::Open, None) if picked.is_missing => {
+                let folder = self.usual_folder();
+                self.dialog = Some(Dialog::OpenPath);
+                self.form = Form::with_path(folder);
+            }
+            (_, Some(path)) => {
+                self.form.path = path.display().to_string();
+                self.form.error = None;
+            }
+            (_, None) if picked.is_missing => {
+                self.form.error = Some("this desktop offers no file dialog: type the path above".to_owned());
+            }
+            _ => {}
+        }
+    }
+}

@@ -1,0 +1,322 @@
+//! Files: opening, saving, exporting, relocating. Reading and writing is done by jobs.
+
+use std::path::{MAIN_SEPARATOR, Path, PathBuf};
+use std::sync::{Arc, PoisonError};
+
+use egui::Context;
+
+use super::super::bench::SourceState;
+use super::super::file_picker::Purpose;
+use super::super::jobs::Slot;
+use super::super::panels::{Dialog, Form, Message, Then};
+use super::super::view_models::{Changes, changes, counted};
+use super::super::window::Window;
+use super::answers::Answer;
+use crate::demo;
+use crate::exchange::{self, ClipAddress, Guard, OpenOptions, Source, disk, ron};
+use crate::scene::{Document, Edit, Evaluator, SourceRef};
+
+/// A scene as read, with its files as far as they were found.
+#[derive(Debug)]
+pub(crate) struct OpenedScene {
+    /// Where it is.
+    pub path: PathBuf,
+    /// The document.
+    pub document: Document,
+    /// Its files.
+    pub sources: Vec<SourceState>,
+    /// Joints it names that are no longer there.
+    pub lost: Vec<String>,
+}
+
+/// What an export wrote.
+#[derive(Debug)]
+pub(crate) struct Exported {
+    /// The file.
+    pub path: PathBuf,
+    /// A file beside it.
+    pub beside: Option<PathBuf>,
+    /// What changed, in a sentence.
+    pub summary: String,
+    /// What is worth telling.
+    pub notes: Vec<String>,
+}
+
+fn is_scene(path: &Path) -> bool {
+    path.extension().is_some_and(|ending| ending.eq_ignore_ascii_case("ron"))
+}
+
+impl Window {
+    /// Does it, or asks about unsaved work first.
+    pub(super) fn open_or_ask(&mut self, then: Then) {
+        let is_unsaved = self.bench.project.as_ref().is_some_and(|project| project.history.is_unsaved());
+        if is_unsaved {
+            self.show_dialog(Dialog::Unsaved(then));
+        } else {
+            // No context is at hand here; what needs one is asked for by command.
+            self.pending(then);
+        }
+    }
+
+    fn pending(&mut self, then: Then) {
+        use super::super::commands::Command;
+        match then {
+            Then::AskForFiles => self.commands.push(Command::Browse(Purpose::Open)),
+            Then::Open(paths) => {
+                let addresses = paths.into_iter().map(|path| ClipAddress { path, clip: None }).collect();
+                self.open_addresses(addresses);
+            }
+            Then::AskForPath => self.ask_for_path(),
+            Then::OpenDemo => self.open_demo(),
+            Then::Quit => self.should_close = true,
+        }
+    }
+
+    pub(super) fn go_on(&mut self, then: Then, ctx: &Context) {
+        self.dialog = None;
+        self.pending(then);
+        ctx.request_repaint();
+    }
+
+    fn ask_for_path(&mut self) {
+        let folder = self.usual_folder();
+        self.dialog = Some(Dialog::OpenPath);
+        self.form = Form::with_path(folder);
+    }
+
+    /// The folder that a path most likely begins with, ending in a separator.
+    pub(super) fn usual_folder(&self) -> String {
+        let known = self.bench.project.as_ref().and_then(|project| {
+            let source = project.document().sources.first()?;
+            source.path.parent().filter(|folder| folder.is_dir()).map(Path::to_owned)
+        });
+        let folder = known.or_else(|| std::env::current_dir().ok());
+        folder.map_or_else(String::new, |folder| {
+            let text = folder.display().to_string();
+            if text.ends_with(MAIN_SEPARATOR) { text } else { format!("{text}{MAIN_SEPARATOR}") }
+        })
+    }
+
+    /// Reads clips or a scene.
+    pub(in super::super) fn open_addresses(&mut self, addresses: Vec<ClipAddress>) {
+        if let Some(scene) = addresses.iter().find(|address| is_scene(&address.path)) {
+            let path = scene.path.clone();
+            if addresses.len() > 1 {
+                let text =
+                    format!("{}: a scene is opened alone; the other files were left out", path.display());
+                self.tell(Message::note(text));
+            }
+            self.jobs.submit(Slot::Open, move |_| Some(Answer::SceneOpened(open_scene(path).map(Box::new))));
+            return;
+        }
+        let clip = addresses.iter().find_map(|address| address.clip.clone());
+        self.jobs.submit(Slot::Open, move |watch| {
+            let mut sources = Vec::new();
+            for (done, address) in addresses.iter().enumerate() {
+                if !crate::snag::Progress::report(watch, done, addresses.len()) {
+                    return None;
+                }
+                match exchange::open(&address.path, &OpenOptions::default()) {
+                    Ok(source) => sources.push(Arc::new(source)),
+                    Err(error) => return Some(Answer::Opened { result: Err(error.to_string()), clip }),
+                }
+            }
+            Some(Answer::Opened { result: Ok(sources), clip })
+        });
+    }
+
+    /// Reads the demo, which is inside the program.
+    pub(in super::super) fn open_demo(&mut self) {
+        self.jobs.submit(Slot::Open, |_| {
+            let scene = &demo::SCENES[0];
+            let path = Path::new(scene.clip_file);
+            let result = exchange::open_bytes(path, scene.clip_bytes.to_vec(), &OpenOptions::default());
+            let result = result.map(|source| vec![Arc::new(source)]).map_err(|error| error.to_string());
+            Some(Answer::Opened { result, clip: None })
+        });
+    }
+
+    pub(super) fn save(&mut self) {
+        match self.bench.project.as_ref().and_then(|project| project.scene_path.clone()) {
+            Some(path) => self.save_to(path),
+            None => self.ask_where_to_save(),
+        }
+    }
+
+    pub(super) fn ask_where_to_save(&mut self) {
+        let Some(project) = &self.bench.project else { return };
+        let source = project.document().sources.first().map(|source| source.path.with_extension("ron"));
+        let path = project.scene_path.clone().or(source).unwrap_or_else(|| PathBuf::from("scene.ron"));
+        self.form = Form::with_path(absolute(&path));
+        self.dialog = Some(Dialog::SavePath);
+    }
+
+    pub(super) fn save_and_go_on(&mut self) {
+        let Some(Dialog::Unsaved(then)) = self.dialog.take() else { return };
+        self.save();
+        self.after_save = Some(then);
+    }
+
+    pub(super) fn save_to(&mut self, path: PathBuf) {
+        let path = if is_scene(&path) { path } else { path.with_added_extension("ron") };
+        if let Err(error) = self.settle_embedded(&path) {
+            self.form.error = Some(error);
+            return;
+        }
+        let Some(project) = &self.bench.project else { return };
+        let (serial, revision) = (project.serial, project.history.revision());
+        let document = Arc::clone(project.document());
+        let skeletons: Vec<_> = (0..document.works.len())
+            .map(|work| project.source_clip(work).map(|clip| Arc::clone(&clip.skeleton)))
+            .collect();
+        self.jobs.submit(Slot::Save, move |_| {
+            let label = |work: usize, joint: usize| {
+                let skeleton = skeletons.get(work).and_then(Option::as_ref);
+                let known = skeleton.filter(|skeleton| joint < skeleton.len());
+                known.map_or_else(|| format!("#{joint}"), |skeleton| skeleton.label(joint).to_owned())
+            };
+            let result = ron::write(&path, &document, &label).map_err(|error| error.to_string());
+            Some(Answer::Saved { serial, revision, path, result })
+        });
+    }
+
+    /// The demo's clip lies in no file: a scene that refers to it needs one beside it.
+    fn settle_embedded(&mut self, scene: &Path) -> Result<(), String> {
+        let Some(project) = &self.bench.project else { return Ok(()) };
+        let folder = scene.parent().unwrap_or(Path::new(""));
+        let mut moved = Vec::new();
+        for (index, known) in project.document().sources.iter().enumerate() {
+            let Some(own) = demo::SCENES.iter().find(|own| known.path == Path::new(own.clip_file)) else {
+                continue;
+            };
+            if known.sha256 != disk::hash(own.clip_bytes) || known.path.exists() {
+                continue;
+            }
+            let path = folder.join(own.clip_file);
+            if !path.exists() {
+                disk::write(&path, own.clip_bytes).map_err(|error| error.to_string())?;
+            }
+            moved
+                .push(Edit::Relocate { source: index, to: SourceRef { path, sha256: known.sha256.clone() } });
+        }
+        for edit in moved {
+            self.edit(&edit);
+        }
+        Ok(())
+    }
+
+    pub(super) fn ask_where_to_export(&mut self) {
+        let Some((source, _)) = self.chosen_source() else { return };
+        let stem = source.path.file_stem().map_or("clip".into(), |stem| stem.to_string_lossy());
+        let name = format!("{stem}_mended.{}", source.format.extension());
+        let path = source.path.with_file_name(name);
+        self.form = Form::with_path(absolute(&path));
+        self.dialog = Some(Dialog::Export);
+    }
+
+    /// The source of the clip on show, and its index.
+    fn chosen_source(&self) -> Option<(Arc<Source>, usize)> {
+        let project = self.bench.project.as_ref()?;
+        let index = self.bench.work()?.source;
+        Some((Arc::clone(project.sources.get(index)?.source()?), index))
+    }
+
+    pub(super) fn export_to(&mut self, path: PathBuf) {
+        let Some((source, index)) = self.chosen_source() else { return };
+        let Some(project) = &self.bench.project else { return };
+        let document = Arc::clone(project.document());
+        let choice = self.bench.work().map(|work| work.clip);
+        let evaluators: Vec<_> =
+            project.findings.iter().map(|findings| Arc::clone(&findings.evaluator)).collect();
+        let inputs: Vec<PathBuf> = document.sources.iter().map(|source| source.path.clone()).collect();
+        self.jobs.submit(Slot::Export, move |watch| {
+            let mut results = source.clips.clone();
+            let mut all = Changes::default();
+            let works = document.works.iter().zip(&evaluators).filter(|(work, _)| work.source == index);
+            for (done, (work, evaluator)) in works.enumerate() {
+                if !crate::snag::Progress::report(watch, done, results.len() + 1) {
+                    return None;
+                }
+                let Some(clip) = source.clips.get(work.clip) else { continue };
+                let mut evaluator: std::sync::MutexGuard<'_, Evaluator> =
+                    evaluator.lock().unwrap_or_else(PoisonError::into_inner);
+                let result = evaluator.evaluate(clip, &work.passes).result;
+                all = all.and(&changes(clip, &result));
+                results[work.clip] = result;
+            }
+            let guard = Guard { inputs, force: false };
+            let written = exchange::write(&source, &results, choice, &path, &guard);
+            Some(Answer::Exported(match written {
+                Ok(written) => Ok(Box::new(Exported {
+                    path: written.path,
+                    beside: written.beside,
+                    summary: all.sentence(),
+                    notes: written.notes.iter().map(ToString::to_string).collect(),
+                })),
+                Err(error) => Err(error.to_string()),
+            }))
+        });
+    }
+
+    pub(super) fn ask_for_source(&mut self) {
+        let Some(project) = &self.bench.project else { return };
+        let Some(index) = project.trouble() else { return };
+        let path = project.document().sources.get(index).map(|source| source.path.display().to_string());
+        self.form = Form::with_path(path.unwrap_or_default());
+        self.dialog = Some(Dialog::Relocate(index));
+    }
+
+    pub(super) fn relocate_to(&mut self, index: usize, path: PathBuf) {
+        let Some(project) = &self.bench.project else { return };
+        let serial = project.serial;
+        self.jobs.submit(Slot::Relocate, move |_| {
+            let result = exchange::open(&path, &OpenOptions::default());
+            let result = result.map(Arc::new).map_err(|error| error.to_string());
+            Some(Answer::Relocated { serial, index, result })
+        });
+    }
+
+    /// Asks with the desktop's own dialog.
+    pub(super) fn browse(&mut self, purpose: Purpose, ctx: &Context) {
+        let typed = match purpose {
+            Purpose::Open => self.usual_folder(),
+            _ => self.form.path.clone(),
+        };
+        let wake = ctx.clone();
+        self.picker.ask(purpose, PathBuf::from(typed), move || wake.request_repaint());
+    }
+}
+
+fn absolute(path: &Path) -> String {
+    std::path::absolute(path).unwrap_or_else(|_| path.to_owned()).display().to_string()
+}
+
+fn open_scene(path: PathBuf) -> Result<OpenedScene, String> {
+    let mut scene = ron::read(&path).map_err(|error| error.to_string())?;
+    let mut sources = Vec::new();
+    for known in &scene.document.sources {
+        sources.push(match exchange::open(&known.path, &OpenOptions::default()) {
+            Err(error) => SourceState::Missing(error.to_string()),
+            Ok(source) if source.sha256 == known.sha256 => SourceState::Ready(Arc::new(source)),
+            Ok(source) => SourceState::Changed(Arc::new(source)),
+        });
+    }
+    let mut lost = Vec::new();
+    for work in 0..scene.document.works.len() {
+        let own = &scene.document.works[work];
+        let source = sources.get(own.source).and_then(SourceState::source);
+        let Some(source) = source else { continue };
+        match source.clips.get(own.clip) {
+            Some(clip) => {
+                let skeleton = Arc::clone(&clip.skeleton);
+                lost.extend(scene.fit(work, &skeleton));
+            }
+            None => lost.push(format!(
+                "all of `{}`, since the file now has {}",
+                own.name,
+                counted(source.clips.len(), "clip")
+            )),
+        }
+    }
+    Ok(OpenedScene { path, document: scene.document, sources, lost })
+}

@@ -1,0 +1,142 @@
+//! Work that is missing is ordered: what panels want to show and nobody has worked out yet.
+
+use std::sync::{Arc, PoisonError};
+
+use super::super::bench::{Evaluated, FromClips};
+use super::super::jobs::Slot;
+use super::super::view_models::{CurveView, HeatKind, changes, curve_set, heat_map, tip_path};
+use super::super::window::Window;
+use super::answers::Answer;
+use crate::clip::Clip;
+use crate::mend::{SurveyOptions, survey};
+use crate::scene::Pass;
+
+/// The last order of each purpose, so that none is given twice.
+#[derive(Debug, Default)]
+pub(crate) struct Asked {
+    /// Project and work.
+    pub survey: Option<(u64, usize)>,
+    /// Project, work and passes.
+    pub evaluation: Option<(u64, usize, Vec<Pass>)>,
+    /// Clips and colours.
+    pub heat: Option<FromClips<HeatKind, ()>>,
+    /// Clips, joint and view.
+    pub curves: Option<FromClips<(usize, CurveView), ()>>,
+    /// Clips and joint.
+    pub tip_path: Option<FromClips<usize, ()>>,
+}
+
+impl Window {
+    /// Orders what is missing.
+    pub(in super::super) fn order_work(&mut self) {
+        let Some(source) = self.bench.source().cloned() else { return };
+        self.order_survey(&source);
+        self.order_evaluation(&source);
+        let Some(result) = self.bench.result().cloned() else { return };
+        self.order_heat(&source, &result);
+        self.order_curves(&source, &result);
+        self.order_tip_path(&source, &result);
+    }
+
+    fn serial(&self) -> u64 {
+        self.bench.project.as_ref().map_or(0, |project| project.serial)
+    }
+
+    fn order_survey(&mut self, source: &Arc<Clip>) {
+        let Some(findings) = self.bench.findings() else { return };
+        let (serial, work) = (self.serial(), self.bench.session.work);
+        if findings.snags.is_some() || findings.search_is_stopped || self.asked.survey == Some((serial, work))
+        {
+            return;
+        }
+        self.asked.survey = Some((serial, work));
+        let clip = Arc::clone(source);
+        self.jobs.submit(Slot::Survey, move |watch| {
+            let found = survey(&clip, &SurveyOptions::default(), watch).ok()?;
+            Some(Answer::Surveyed { serial, work, snags: Arc::new(found.snags) })
+        });
+    }
+
+    fn order_evaluation(&mut self, source: &Arc<Clip>) {
+        let passes = self.bench.passes();
+        let Some(findings) = self.bench.findings() else { return };
+        if findings.evaluated.as_ref().is_some_and(|evaluated| evaluated.passes == passes) {
+            return;
+        }
+        let order = (self.serial(), self.bench.session.work, passes);
+        if self.asked.evaluation.as_ref() == Some(&order) && self.jobs.is_running(Slot::Evaluate) {
+            return;
+        }
+        let (serial, work, passes) = order.clone();
+        self.asked.evaluation = Some(order);
+        let evaluator = Arc::clone(&findings.evaluator);
+        let source = Arc::clone(source);
+        self.jobs.submit(Slot::Evaluate, move |_| {
+            let mut evaluator = evaluator.lock().unwrap_or_else(PoisonError::into_inner);
+            let evaluation = evaluator.evaluate(&source, &passes);
+            let changes = changes(&source, &evaluation.result);
+            let evaluated = Evaluated { passes, evaluation: Arc::new(evaluation), changes };
+            Some(Answer::Evaluated { serial, work, evaluated: Box::new(evaluated) })
+        });
+    }
+
+    fn order_heat(&mut self, source: &Arc<Clip>, result: &Arc<Clip>) {
+        let kind = self.bench.session.heat_kind;
+        let is_there = self.bench.heat.as_ref().is_some_and(|heat| heat.is_of(source, result, &kind));
+        let is_ordered = self.asked.heat.as_ref().is_some_and(|asked| asked.is_of(source, result, &kind));
+        if is_there || is_ordered {
+            return;
+        }
+        let order =
+            FromClips { source: Arc::clone(source), result: Arc::clone(result), parameters: kind, value: () };
+        self.asked.heat = Some(order.clone());
+        let known = self.bench.heat.clone();
+        self.jobs.submit(Slot::Heat, move |watch| {
+            let known = known.as_ref().map(|known| (&*known.source, &*known.result, &*known.value));
+            let value = heat_map(&order.source, &order.result, kind, known, watch).ok()?;
+            Some(Answer::Heat(order.with(Arc::new(value))))
+        });
+    }
+
+    fn order_curves(&mut self, source: &Arc<Clip>, result: &Arc<Clip>) {
+        let Some(joint) = self.bench.session.joint else { return };
+        let wanted = (joint, self.bench.session.curve_view);
+        let is_there = self.bench.curves.as_ref().is_some_and(|curves| curves.is_of(source, result, &wanted));
+        let is_ordered = self.asked.curves.as_ref().is_some_and(|asked| asked.is_of(source, result, &wanted));
+        if is_there || (is_ordered && self.jobs.is_running(Slot::Curves)) {
+            return;
+        }
+        let order = FromClips {
+            source: Arc::clone(source),
+            result: Arc::clone(result),
+            parameters: wanted,
+            value: (),
+        };
+        self.asked.curves = Some(order.clone());
+        self.jobs.submit(Slot::Curves, move |watch| {
+            let value = curve_set(&order.source, &order.result, wanted.0, wanted.1, watch).ok()?;
+            Some(Answer::Curves(order.with(Arc::new(value))))
+        });
+    }
+
+    fn order_tip_path(&mut self, source: &Arc<Clip>, result: &Arc<Clip>) {
+        let Some(joint) = self.bench.session.joint else { return };
+        let is_there = self.bench.tip_path.as_ref().is_some_and(|path| path.is_of(source, result, &joint));
+        let is_ordered =
+            self.asked.tip_path.as_ref().is_some_and(|asked| asked.is_of(source, result, &joint));
+        if is_there || (is_ordered && self.jobs.is_running(Slot::TipPath)) {
+            return;
+        }
+        let order = FromClips {
+            source: Arc::clone(source),
+            result: Arc::clone(result),
+            parameters: joint,
+            value: (),
+        };
+        self.asked.tip_path = Some(order.clone());
+        self.jobs.submit(Slot::TipPath, move |watch| {
+            let value = tip_path(&order.result, joint, watch).ok()?;
+            Some(Answer::TipPath(order.with(Arc::new(value))))
+        });
+    }
+}

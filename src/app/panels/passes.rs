@@ -1,0 +1,156 @@
+//! The passes: the ordered steps from the source to the result.
+
+use egui::{Color32, FontId, Rect, Role, ScrollArea, Sense, Slider, Ui, WidgetInfo, vec2};
+
+use super::super::commands::Command;
+use super::super::theme::{INSET, Look};
+use super::super::view_models::{PassRow, pass_rows};
+use super::super::widgets::{Icon, hint, paint_icon, strip};
+use super::Scope;
+use crate::scene::Edit;
+
+/// The panel.
+pub(crate) fn passes_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let look = scope.look;
+    let rows = scope.bench.work().map(|work| {
+        let evaluated = scope.bench.findings().and_then(|findings| findings.evaluated.as_ref());
+        pass_rows(work, evaluated.map(|evaluated| &*evaluated.evaluation))
+    });
+    let rows = rows.unwrap_or_default();
+    strip(ui, "Passes", |_| {});
+    ui.painter().vline(ui.max_rect().left(), ui.max_rect().y_range(), (1.0, look.line));
+    if rows.is_empty() {
+        hint(ui, "Nothing is changed yet. Each mend becomes a pass here: ordered, switchable, measured");
+        return;
+    }
+    let changes = scope.bench.findings().and_then(|findings| findings.evaluated.as_ref());
+    let total = changes.map(|evaluated| evaluated.changes.sentence());
+    let area = ui.available_rect_before_wrap();
+    let footer_height = 26.0;
+    let body = Rect::from_min_max(area.min, area.max - vec2(0.0, footer_height));
+    ui.scope_builder(egui::UiBuilder::new().max_rect(body), |ui| {
+        ui.spacing_mut().item_spacing.y = 0.0;
+        ScrollArea::vertical().id_salt("passes").auto_shrink(false).show(ui, |ui| {
+            let count = rows.len();
+            for (place, row) in rows.iter().enumerate() {
+                pass_ui(ui, place, count, row, scope);
+            }
+        });
+    });
+    let footer = Rect::from_min_max(egui::pos2(area.left(), body.bottom()), area.max);
+    ui.painter().hline(footer.x_range(), footer.top(), (1.0, look.line));
+    if let Some(words) = total {
+        let response = ui.allocate_rect(footer, Sense::hover());
+        response.widget_info(|| WidgetInfo::labeled(Role::Label, true, &words));
+        let place = footer.shrink2(vec2(INSET, 0.0));
+        one_line(ui.painter(), place, &words, FontId::proportional(12.5), look.text);
+        response.on_hover_text(words);
+    }
+}
+
+fn one_line(painter: &egui::Painter, bounds: Rect, words: &str, font: FontId, color: Color32) {
+    let mut job = egui::text::LayoutJob::simple_singleline(words.to_owned(), font, color);
+    job.wrap = egui::text::TextWrapping::truncate_at_width(bounds.width().max(8.0));
+    let galley = painter.layout_job(job);
+    painter.galley(egui::pos2(bounds.left(), bounds.center().y - galley.size().y / 2.0), galley, color);
+}
+
+fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut Scope<'_>) {
+    let look = scope.look;
+    let work = scope.bench.session.work;
+    let frame = egui::Frame::NONE.inner_margin(egui::Margin::symmetric(INSET as i8, 5));
+    let response = frame
+        .show(ui, |ui| {
+            ui.set_width(ui.available_width());
+            ui.spacing_mut().item_spacing.y = 2.0;
+            ui.horizontal(|ui| {
+                let mut on = row.on;
+                let title = format!("{}. {}", place + 1, row.title);
+                let switch = ui.add(egui::Checkbox::without_text(&mut on));
+                switch.widget_info(|| {
+                    WidgetInfo::selected(Role::CheckBox, true, row.on, format!("Pass {}", row.title))
+                });
+                if switch.on_hover_text("Take part or not").changed() {
+                    scope.out.push(Command::Edit(Edit::SwitchPass { work, pass: row.id, on }));
+                }
+                let buttons = 3.0 * 24.0;
+                let (words, _) = ui.allocate_exact_size(
+                    vec2((ui.available_width() - buttons).max(30.0), 20.0),
+                    Sense::hover(),
+                );
+                one_line(
+                    ui.painter(),
+                    words,
+                    &title,
+                    FontId::proportional(13.5),
+                    if row.on { look.text } else { look.faint },
+                );
+                ui.spacing_mut().item_spacing.x = 0.0;
+                let named = |verb: &str| format!("{verb}: {}", row.title);
+                if small_button(ui, Icon::Up, &named("Move up"), place > 0, &look) {
+                    scope.out.push(Command::Edit(Edit::MovePass { work, pass: row.id, to: place - 1 }));
+                }
+                if small_button(ui, Icon::Down, &named("Move down"), place + 1 < count, &look) {
+                    scope.out.push(Command::Edit(Edit::MovePass { work, pass: row.id, to: place + 1 }));
+                }
+                if small_button(ui, Icon::Close, &named("Remove"), true, &look) {
+                    scope.out.push(Command::Edit(Edit::RemovePass { work, pass: row.id }));
+                }
+            });
+            ui.horizontal(|ui| {
+                ui.add_space(24.0);
+                let (words, response) =
+                    ui.allocate_exact_size(vec2(ui.available_width(), 16.0), Sense::hover());
+                response.widget_info(|| WidgetInfo::labeled(Role::Label, true, &row.change));
+                one_line(ui.painter(), words, &row.change, FontId::proportional(12.0), look.faint);
+            });
+            if let Some(amount) = row.amount {
+                amount_ui(ui, amount, row, scope);
+            }
+            if let Some(problem) = &row.problem {
+                ui.horizontal(|ui| {
+                    ui.add_space(24.0);
+                    let (mark, _) = ui.allocate_exact_size(vec2(14.0, 14.0), Sense::hover());
+                    paint_icon(ui.painter(), mark, Icon::Warning, look.error);
+                    ui.add(
+                        egui::Label::new(egui::RichText::new(problem).color(look.error).size(12.0)).wrap(),
+                    );
+                });
+            }
+        })
+        .response;
+    ui.painter().hline(response.rect.x_range(), response.rect.bottom(), (1.0, look.grid));
+    response.on_hover_text(row.explanation);
+}
+
+/// How much of a pass is taken. While it is dragged the window shows the result; letting go is one step of the history.
+fn amount_ui(ui: &mut Ui, amount: f64, row: &PassRow, scope: &mut Scope<'_>) {
+    let work = scope.bench.session.work;
+    let shown = scope.bench.preview.filter(|(id, _)| *id == row.id).map_or(amount, |(_, amount)| amount);
+    let mut percent = shown * 100.0;
+    ui.horizontal(|ui| {
+        ui.add_space(24.0);
+        ui.spacing_mut().slider_width = (ui.available_width() - 64.0).clamp(40.0, 220.0);
+        let slider = Slider::new(&mut percent, 0.0..=100.0).suffix(" %").fixed_decimals(0);
+        let response = ui.add(slider);
+        response.widget_info(|| WidgetInfo::slider(true, percent, format!("Amount of {}", row.title)));
+        let response = response.on_hover_text("How much of the change is taken");
+        let wanted = (percent / 100.0).clamp(0.0, 1.0);
+        if response.drag_stopped() || (response.changed() && !response.dragged()) {
+            scope.out.push(Command::Edit(Edit::SetAmount { work, pass: row.id, amount: wanted }));
+        } else if response.changed() {
+            scope.out.push(Command::PreviewAmount(row.id, wanted));
+        }
+    });
+}
+
+fn small_button(ui: &mut Ui, icon: Icon, label: &str, enabled: bool, look: &Look) -> bool {
+    let sense = if enabled { Sense::click() } else { Sense::hover() };
+    let (bounds, response) = ui.allocate_exact_size(vec2(24.0, 20.0), sense);
+    response.widget_info(|| WidgetInfo::labeled(Role::Button, enabled, label));
+    if enabled && (response.hovered() || response.has_focus()) {
+        ui.painter().rect_filled(bounds, 4.0, look.chosen);
+    }
+    paint_icon(ui.painter(), bounds.shrink(4.0), icon, if enabled { look.text } else { look.line });
+    response.on_hover_text(label).clicked() && enabled
+}

@@ -1,0 +1,283 @@
+//! The snag table: what is wrong, where, and what has been decided about it.
+
+use egui::{
+    Align2, Color32, ComboBox, FontId, Painter, Rect, Role, ScrollArea, Sense, Ui, UiBuilder, WidgetInfo,
+    pos2, vec2,
+};
+
+use super::super::commands::{Action, Command};
+use super::super::jobs::Slot;
+use super::super::theme::{INSET, Look, ROW_HEIGHT};
+use super::super::view_models::{SnagOrder, SnagRow, SnagState};
+use super::super::widgets::{action_button, hint, letter_plate, strip};
+use super::Scope;
+use crate::scene::SnagMark;
+use crate::snag::SnagKind;
+
+/// One column: its words, its width in points (0: what is left), what it is ordered by.
+struct Column {
+    words: &'static str,
+    width: f32,
+    order: SnagOrder,
+}
+
+const COLUMNS: [Column; 6] = [
+    Column { words: "Kind", width: 122.0, order: SnagOrder::Kind },
+    Column { words: "Joint", width: 0.0, order: SnagOrder::Joint },
+    Column { words: "Frames", width: 92.0, order: SnagOrder::Time },
+    Column { words: "Size", width: 58.0, order: SnagOrder::Size },
+    Column { words: "Sure", width: 52.0, order: SnagOrder::Confidence },
+    Column { words: "State", width: 66.0, order: SnagOrder::State },
+];
+
+/// The panel.
+pub(crate) fn snags_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let rows = std::sync::Arc::clone(&scope.rows);
+    let total = scope.bench.snags().len();
+    let open = scope.states.iter().filter(|&&state| state == SnagState::Open).count();
+    let title = match total {
+        0 => "Snags".to_owned(),
+        _ => format!("Snags: {open} open of {total}"),
+    };
+    strip(ui, &title, |ui| filter_ui(ui, scope));
+    if scope.bench.source().is_none() {
+        hint(ui, "No clip");
+        return;
+    }
+    let footer_height = if total == 0 { 0.0 } else { footer_height(ui) };
+    let area = ui.available_rect_before_wrap();
+    let body = Rect::from_min_max(area.min, pos2(area.right(), area.bottom() - footer_height));
+    let footer = Rect::from_min_max(pos2(area.left(), body.bottom()), area.max);
+    let mut body_ui = ui.new_child(UiBuilder::new().max_rect(body));
+    if rows.is_empty() {
+        hint(&mut body_ui, empty_words(scope, total));
+    } else {
+        table_ui(&mut body_ui, &rows, scope);
+    }
+    if total > 0 {
+        let mut footer_ui = ui.new_child(UiBuilder::new().max_rect(footer.shrink2(vec2(INSET, 0.0))));
+        footer_ui.shrink_clip_rect(footer);
+        details_ui(&mut footer_ui, footer, scope);
+    }
+    ui.allocate_rect(area, Sense::hover());
+}
+
+fn empty_words(scope: &Scope<'_>, total: usize) -> &'static str {
+    if scope.running.iter().any(|(slot, _)| *slot == Slot::Survey) {
+        "Finding snags…"
+    } else if total > 0 {
+        "No snag passes the filter"
+    } else if scope.bench.findings().is_some_and(|findings| findings.snags.is_some()) {
+        "No snags: every joint turns as it should"
+    } else {
+        "Not searched yet: Snags, Find again (F5)"
+    }
+}
+
+fn filter_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let mut filter = scope.bench.session.filter.clone();
+    let count = |kind: SnagKind| scope.bench.snags().iter().filter(|snag| snag.kind == kind).count();
+    ui.checkbox(&mut filter.only_open, "Open only");
+    ui.add_space(6.0);
+    let mut only_joint = filter.joint.is_some();
+    let joint = scope.bench.session.joint;
+    if ui
+        .add_enabled(joint.is_some(), egui::Checkbox::new(&mut only_joint, "This joint"))
+        .on_hover_text("Only snags of the chosen joint")
+        .changed()
+    {
+        filter.joint = joint.filter(|_| only_joint);
+    }
+    ui.add_space(6.0);
+    let words = |kind: Option<SnagKind>| match kind {
+        None => "All kinds".to_owned(),
+        Some(kind) => format!("{} {} ({})", kind.letter(), kind, count(kind)),
+    };
+    let combo = ComboBox::from_id_salt("snag kind").selected_text(words(filter.kind)).height(320.0);
+    let response = combo
+        .show_ui(ui, |ui| {
+            for kind in std::iter::once(None).chain(SnagKind::ALL.map(Some)) {
+                let response = ui.selectable_value(&mut filter.kind, kind, words(kind));
+                if let Some(kind) = kind {
+                    response.on_hover_text(kind.explanation());
+                }
+            }
+        })
+        .response;
+    response.widget_info(|| WidgetInfo::labeled(Role::ComboBox, true, "Kinds shown"));
+    if filter != scope.bench.session.filter {
+        scope.out.push(Command::SetFilter(filter));
+    }
+}
+
+/// Left and right edge of each column.
+fn edges(left: f32, width: f32) -> [[f32; 2]; COLUMNS.len()] {
+    let fixed: f32 = COLUMNS.iter().map(|column| column.width).sum();
+    let free = (width - fixed - 2.0 * INSET).max(60.0);
+    let mut at = left + INSET;
+    COLUMNS.each_ref().map(|column| {
+        let start = at;
+        at += if column.width == 0.0 { free } else { column.width };
+        [start, at - 8.0]
+    })
+}
+
+fn table_ui(ui: &mut Ui, rows: &[SnagRow], scope: &mut Scope<'_>) {
+    let look = scope.look;
+    let area = ui.available_rect_before_wrap();
+    let (header, _) = ui.allocate_exact_size(vec2(area.width(), ROW_HEIGHT), Sense::hover());
+    let columns = edges(header.left(), header.width());
+    for (column, [left, right]) in COLUMNS.iter().zip(columns) {
+        let cell = Rect::from_x_y_ranges(left - 4.0..=right + 4.0, header.y_range());
+        let response = ui.interact(cell, ui.scope_id().with(("column", column.words)), Sense::click());
+        let is_on = scope.bench.session.order == column.order;
+        response.widget_info(|| {
+            WidgetInfo::selected(
+                Role::ColumnHeader,
+                true,
+                is_on,
+                format!("Order by {}", column.words.to_lowercase()),
+            )
+        });
+        let color = if is_on || response.hovered() { look.text } else { look.faint };
+        let words = ui.painter().text(
+            pos2(left, header.center().y),
+            Align2::LEFT_CENTER,
+            column.words,
+            FontId::proportional(12.0),
+            color,
+        );
+        if is_on {
+            ui.painter().hline(words.x_range(), header.bottom() - 3.0, (1.5, look.selection));
+        }
+        if response.clicked() {
+            scope.out.push(Command::SetOrder(column.order));
+        }
+    }
+    ui.painter().hline(header.x_range(), header.bottom(), (1.0, look.line));
+    let chosen = scope.bench.session.snag;
+    let chosen_place = chosen
+        .and_then(|mark| rows.iter().position(|row| SnagMark::of(&scope.bench.snags()[row.index]) == mark));
+    ui.spacing_mut().item_spacing.y = 0.0;
+    let scrolls = scope.pictures.scroll_to_snag;
+    ScrollArea::vertical().id_salt("snag rows").auto_shrink(false).show_viewport(ui, |ui, viewport| {
+        let top = ui.max_rect().top();
+        ui.set_height(ROW_HEIGHT * rows.len() as f32);
+        if scrolls && let Some(place) = chosen_place {
+            let y = top + place as f32 * ROW_HEIGHT;
+            ui.scroll_to_rect(Rect::from_min_size(pos2(area.left(), y), vec2(1.0, ROW_HEIGHT)), None);
+        }
+        let first = (viewport.top() / ROW_HEIGHT).floor().max(0.0) as usize;
+        let last = ((viewport.bottom() / ROW_HEIGHT).ceil() as usize).min(rows.len());
+        for (place, row) in rows.iter().enumerate().take(last).skip(first) {
+            let y = top + place as f32 * ROW_HEIGHT;
+            let bounds = Rect::from_min_size(pos2(area.left(), y), vec2(area.width(), ROW_HEIGHT));
+            row_ui(ui, bounds, &columns, row, chosen_place == Some(place), &look, scope.out);
+        }
+    });
+}
+
+fn row_ui(
+    ui: &mut Ui,
+    bounds: Rect,
+    columns: &[[f32; 2]; COLUMNS.len()],
+    row: &SnagRow,
+    is_chosen: bool,
+    look: &Look,
+    out: &mut Vec<Command>,
+) {
+    let response = ui.interact(bounds, ui.scope_id().with(("snag", row.index)), Sense::click());
+    response.widget_info(|| {
+        let words = format!("Snag {}, {}, frame {}, {}", row.kind, row.joint, row.frames, row.state.word());
+        WidgetInfo::selected(Role::Row, true, is_chosen, words)
+    });
+    let painter = ui.painter();
+    if is_chosen {
+        painter.rect_filled(bounds, 0.0, look.chosen);
+        painter.rect_filled(Rect::from_min_size(bounds.min, vec2(3.0, bounds.height())), 0.0, look.selection);
+    } else if response.hovered() {
+        painter.rect_filled(bounds, 0.0, look.hover);
+    }
+    let y = bounds.center().y;
+    letter_plate(painter, look, pos2(columns[0][0] + 8.0, y), 14.0, row.letter, row.state);
+    let ink = if row.state == SnagState::Open { look.text } else { look.faint };
+    let kind = row.kind.to_string();
+    let cells = [&kind, &row.joint, &row.frames, &row.size, &row.confidence];
+    for (place, (words, [left, right])) in cells.into_iter().zip(*columns).enumerate() {
+        let left = if place == 0 { left + 20.0 } else { left };
+        cell_ui(painter, words, [left, right], y, ink, place >= 2);
+    }
+    let [left, right] = columns[5];
+    let dot = pos2(left + 4.0, y);
+    match row.state {
+        SnagState::Open => {
+            painter.circle_stroke(dot, 3.2, (1.4, look.snag));
+        }
+        SnagState::Mended => {
+            painter.circle_filled(dot, 3.6, look.after);
+        }
+        SnagState::Left => {
+            painter.hline(dot.x - 3.5..=dot.x + 3.5, y, (1.6, look.faint));
+        }
+    }
+    cell_ui(painter, row.state.word(), [left + 13.0, right], y, ink, false);
+    if response.clicked() {
+        out.push(Command::ChooseSnag(row.index));
+    }
+    response.on_hover_text_at_pointer(format!("{}\n{}", row.text, row.kind.mend_explanation()));
+}
+
+fn cell_ui(painter: &Painter, words: &str, [left, right]: [f32; 2], y: f32, ink: Color32, is_number: bool) {
+    let font = if is_number { FontId::monospace(12.0) } else { FontId::proportional(13.0) };
+    let mut job = egui::text::LayoutJob::simple_singleline(words.to_owned(), font, ink);
+    job.wrap = egui::text::TextWrapping::truncate_at_width((right - left).max(8.0));
+    let galley = painter.layout_job(job);
+    painter.galley(pos2(left, y - galley.size().y / 2.0), galley, ink);
+}
+
+fn footer_height(ui: &Ui) -> f32 {
+    if ui.available_height() < 150.0 { 34.0 } else { 70.0 }
+}
+
+/// The chosen snag in words, and what can be done about it.
+fn details_ui(ui: &mut Ui, footer: Rect, scope: &mut Scope<'_>) {
+    let look = scope.look;
+    ui.painter().hline(footer.x_range(), footer.top(), (1.0, look.line));
+    if footer.height() > 40.0 {
+        let words = scope.bench.chosen_snag().map_or_else(
+            || "Choose a snag to see what is wrong and what its mend would do".to_owned(),
+            |snag| format!("{} {}", sentence(&snag.text), snag.kind.mend_explanation()),
+        );
+        let mut job = egui::text::LayoutJob::simple(
+            words.clone(),
+            FontId::proportional(12.5),
+            look.faint,
+            footer.width() - 2.0 * INSET,
+        );
+        job.wrap.max_rows = 2;
+        let galley = ui.painter().layout_job(job);
+        let (place, response) =
+            ui.allocate_exact_size(vec2(footer.width() - 2.0 * INSET, 36.0), Sense::hover());
+        response.widget_info(|| WidgetInfo::labeled(Role::Label, true, &words));
+        ui.painter().galley(place.min + vec2(0.0, 4.0), galley, look.faint);
+        response.on_hover_text(words);
+    } else {
+        ui.add_space(4.0);
+    }
+    ui.horizontal(|ui| {
+        ui.spacing_mut().item_spacing.x = 5.0;
+        if scope.now.snag_is_mended {
+            action_button(ui, Action::TakeBack, scope.now, scope.out);
+        } else {
+            action_button(ui, Action::Mend, scope.now, scope.out);
+        }
+        action_button(ui, Action::MendKind, scope.now, scope.out);
+        action_button(ui, Action::MendSafe, scope.now, scope.out);
+        action_button(ui, Action::Leave, scope.now, scope.out);
+    });
+}
+
+/// With one full stop at its end.
+fn sentence(words: &str) -> String {
+    format!("{}.", words.trim_end_matches('.'))
+}

@@ -1,0 +1,151 @@
+//! Pictures that our own rasteriser makes: the skeleton view and the turn map. Kept until what they show changes.
+
+use std::sync::Arc;
+
+use egui::{ColorImage, Context, Rect, TextureHandle, TextureOptions, pos2};
+
+use crate::clip::Clip;
+use crate::raster::{Camera, Canvas, SceneView, render_into};
+
+use super::view_models::{HeatMap, Memo, Stage, TimeWindow};
+
+/// A texture and the key of what is on it.
+pub(crate) struct Picture<K> {
+    key: Option<K>,
+    texture: Option<TextureHandle>,
+}
+
+impl<K> Default for Picture<K> {
+    fn default() -> Self {
+        Self { key: None, texture: None }
+    }
+}
+
+impl<K> std::fmt::Debug for Picture<K> {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        f.debug_struct("Picture").field("is_made", &self.texture.is_some()).finish_non_exhaustive()
+    }
+}
+
+impl<K: PartialEq> Picture<K> {
+    /// The texture for `key`, drawn anew only if the last one was of another key.
+    pub(crate) fn show(
+        &mut self,
+        ctx: &Context,
+        name: &str,
+        key: K,
+        draw: impl FnOnce(&K) -> ColorImage,
+    ) -> egui::TextureId {
+        if let (Some(texture), true) = (&self.texture, self.key.as_ref() == Some(&key)) {
+            return texture.id();
+        }
+        let image = draw(&key);
+        self.key = Some(key);
+        match &mut self.texture {
+            Some(texture) => {
+                texture.set(image, TextureOptions::NEAREST);
+                texture.id()
+            }
+            None => self.texture.insert(ctx.load_texture(name, image, TextureOptions::NEAREST)).id(),
+        }
+    }
+}
+
+/// What the picture of the skeleton view hangs on.
+#[derive(Clone, Debug, PartialEq)]
+pub(crate) struct SkeletonKey {
+    /// Pixels.
+    pub size_px: [usize; 2],
+    /// From where.
+    pub camera: Camera,
+    /// When, in bits: equal or not is all that counts.
+    pub time_bits: u64,
+    /// Addresses of source, result and tip path, which stay in memory while the picture is of them.
+    pub data: [usize; 3],
+    /// Chosen joint and joint under the pointer.
+    pub joints: [Option<usize>; 2],
+    /// Dark, source as well, source alone, following.
+    pub switches: [bool; 4],
+    /// Pixels per point.
+    pub scale: f32,
+}
+
+/// What the picture of the turn map hangs on.
+#[derive(Clone, Debug)]
+pub(crate) struct MapKey {
+    /// The numbers.
+    pub map: Arc<HeatMap>,
+    /// The rows from top to bottom.
+    pub rows: Vec<usize>,
+    /// The stretch of time.
+    pub window: TimeWindow,
+    /// Pixels: width, and height of a row.
+    pub size_px: [usize; 2],
+    /// Whether the window is dark.
+    pub is_dark: bool,
+}
+
+impl PartialEq for MapKey {
+    fn eq(&self, other: &Self) -> bool {
+        Arc::ptr_eq(&self.map, &other.map)
+            && self.rows == other.rows
+            && self.window == other.window
+            && self.size_px == other.size_px
+            && self.is_dark == other.is_dark
+    }
+}
+
+/// All pictures of the window, and what is kept for making them.
+#[derive(Debug, Default)]
+pub(crate) struct Pictures {
+    /// The skeleton view.
+    pub skeleton: Picture<SkeletonKey>,
+    /// What was drawn there last: for choosing a limb with the pointer.
+    pub figure: Option<SceneView>,
+    /// The turn map.
+    pub map: Picture<MapKey>,
+    /// The rasteriser's memory.
+    pub canvas: Canvas,
+    /// Floor and travel of the clip on show.
+    pub stage: Memo<ClipKey, Arc<Stage>>,
+    /// The joint under the pointer, in any panel.
+    pub hovered: Option<usize>,
+    /// A joint that lists are to bring into view.
+    pub scroll_to_joint: Option<usize>,
+    /// The snag table is to bring the chosen snag into view.
+    pub scroll_to_snag: bool,
+}
+
+/// A clip by its identity.
+#[derive(Clone, Debug)]
+pub(crate) struct ClipKey(pub Arc<Clip>);
+
+impl PartialEq for ClipKey {
+    fn eq(&self, other: &Self) -> bool {
+        Arc::ptr_eq(&self.0, &other.0)
+    }
+}
+
+impl Pictures {
+    /// Floor and travel of a clip.
+    pub(crate) fn stage(&mut self, clip: &Arc<Clip>) -> Arc<Stage> {
+        Arc::clone(self.stage.get_or_compute(ClipKey(Arc::clone(clip)), |key| Arc::new(Stage::new(&key.0))))
+    }
+
+    /// Draws a skeleton view on the kept canvas.
+    pub(crate) fn draw_figure(canvas: &mut Canvas, view: &SceneView) -> ColorImage {
+        render_into(view, canvas);
+        let image = &canvas.image;
+        ColorImage::from_rgba_premultiplied([image.width(), image.height()], image.as_bytes())
+    }
+}
+
+/// A box moved onto whole pixels, so that a picture of its size is copied and not scaled; and its size in pixels.
+pub(crate) fn on_pixels(bounds: Rect, pixels_per_point: f32) -> (Rect, [usize; 2]) {
+    let round = |value: f32| (value * pixels_per_point).round();
+    let (left, top) = (round(bounds.left()), round(bounds.top()));
+    let (width, height) = ((round(bounds.right()) - left).max(1.0), (round(bounds.bottom()) - top).max(1.0));
+    let min = pos2(left / pixels_per_point, top / pixels_per_point);
+    let max = pos2((left + width) / pixels_per_point, (top + height) / pixels_per_point);
+    (Rect::from_min_max(min, max), [width as usize, height as usize])
+}

@@ -1,0 +1,183 @@
+//! What a person is looking at: selection, playhead, camera, which curves. Not part of the document, not undone.
+
+use std::collections::BTreeSet;
+
+use crate::clip::Clip;
+use crate::raster::Camera;
+use crate::scene::SnagMark;
+
+use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeWindow};
+
+/// The speeds that the menu steps through.
+pub const SPEEDS: [f64; 7] = [0.1, 0.25, 0.5, 1.0, 1.5, 2.0, 4.0];
+
+/// Where play stands.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Playback {
+    /// The time shown, seconds.
+    pub playhead_secs: f64,
+    /// Whether it moves.
+    pub is_playing: bool,
+    /// Whether it starts over at the end.
+    pub is_looping: bool,
+    /// Only this part is played.
+    pub range: Option<(f64, f64)>,
+    /// Times the true speed, 0.1 to 4.
+    pub speed: f64,
+}
+
+impl Default for Playback {
+    fn default() -> Self {
+        Self { playhead_secs: 0.0, is_playing: false, is_looping: true, range: None, speed: 1.0 }
+    }
+}
+
+impl Playback {
+    /// The part that is played, of a clip this long.
+    pub fn bounds(&self, duration_secs: f64) -> (f64, f64) {
+        let (start, end) = self.range.unwrap_or((0.0, duration_secs));
+        (start.clamp(0.0, duration_secs), end.clamp(0.0, duration_secs))
+    }
+
+    /// Moves on by so much time of the wall clock.
+    pub fn advance(&mut self, wall_secs: f64, duration_secs: f64) {
+        if !self.is_playing {
+            return;
+        }
+        let (start, end) = self.bounds(duration_secs);
+        let next = self.playhead_secs + wall_secs * self.speed;
+        self.playhead_secs = if next < end {
+            next.max(start)
+        } else if self.is_looping && end > start {
+            start + (next - start) % (end - start)
+        } else {
+            self.is_playing = false;
+            end
+        };
+    }
+}
+
+/// Why the camera is brought to the figure.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Fit {
+    /// A clip has come: also choose whether to follow.
+    Arrive,
+    /// It was asked for.
+    Again,
+}
+
+/// What is looked at, and how.
+#[derive(Clone, Debug, PartialEq)]
+#[expect(clippy::struct_excessive_bools, reason = "independent switches, each with its own menu entry")]
+pub struct Session {
+    /// Which clip of the document.
+    pub work: usize,
+    /// The chosen joint.
+    pub joint: Option<usize>,
+    /// The chosen snag.
+    pub snag: Option<SnagMark>,
+    /// Where play stands.
+    pub playback: Playback,
+    /// The stretch of time on screen.
+    pub window: TimeWindow,
+    /// What the curves show.
+    pub curve_view: CurveView,
+    /// What the turn map shows.
+    pub heat_kind: HeatKind,
+    /// Whether its hottest row is on top.
+    pub worst_first: bool,
+    /// From where the figure is seen.
+    pub camera: Camera,
+    /// What the camera is to be fitted to, once the size of the view is known.
+    pub fit: Option<Fit>,
+    /// Whether it goes along with the figure.
+    pub follows: bool,
+    /// Whether the source is drawn as well.
+    pub shows_before: bool,
+    /// Whether the source is drawn instead, until switched off.
+    pub source_alone: bool,
+    /// Whether the keys that show the source alone are held.
+    pub source_held: bool,
+    /// Joints whose children are hidden.
+    pub folded: BTreeSet<usize>,
+    /// Which snags are listed.
+    pub filter: SnagFilter,
+    /// In which order.
+    pub order: SnagOrder,
+}
+
+impl Default for Session {
+    fn default() -> Self {
+        Self {
+            work: 0,
+            joint: None,
+            snag: None,
+            playback: Playback::default(),
+            window: TimeWindow::whole(1.0),
+            curve_view: CurveView::PlaneAngles,
+            heat_kind: HeatKind::TurnRate,
+            worst_first: false,
+            camera: Camera::default(),
+            fit: Some(Fit::Arrive),
+            follows: true,
+            shows_before: true,
+            source_alone: false,
+            source_held: false,
+            folded: BTreeSet::new(),
+            filter: SnagFilter::default(),
+            order: SnagOrder::default(),
+        }
+    }
+}
+
+impl Session {
+    /// Whether only the source is to be seen now.
+    pub fn shows_source_alone(&self) -> bool {
+        self.source_alone || self.source_held
+    }
+
+    /// Turns to another clip. Habits (views, colours, speed) stay; what belongs to the clip starts anew.
+    pub fn turn_to(&mut self, work: usize, clip: Option<&Clip>) {
+        *self = Self {
+            work,
+            joint: clip.and_then(first_moving_joint),
+            window: TimeWindow::whole(clip.map_or(1.0, |clip| clip.duration_secs)),
+            playback: Playback {
+                is_looping: self.playback.is_looping,
+                speed: self.playback.speed,
+                ..Playback::default()
+            },
+            curve_view: self.curve_view,
+            heat_kind: self.heat_kind,
+            worst_first: self.worst_first,
+            camera: Camera { lens: self.camera.lens, ..Camera::default() },
+            shows_before: self.shows_before,
+            order: self.order,
+            ..Self::default()
+        };
+    }
+}
+
+/// The first listed joint that turns, so that curves and numbers have something to show at once.
+fn first_moving_joint(clip: &Clip) -> Option<usize> {
+    let moves = |&joint: &usize| clip.rotation(joint).is_some_and(|track| track.times.len() > 1);
+    clip.skeleton.listed().find(moves).or_else(|| clip.skeleton.listed().next())
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn play_loops_inside_its_range_and_else_stops_at_the_end() {
+        let mut playback =
+            Playback { is_playing: true, range: Some((1.0, 2.0)), speed: 2.0, ..Playback::default() };
+        playback.advance(0.1, 10.0);
+        assert_eq!(playback.playhead_secs, 1.0);
+        playback.advance(0.6, 10.0);
+        assert!((playback.playhead_secs - 1.2).abs() < 1e-12);
+        playback.is_looping = false;
+        playback.advance(1.0, 10.0);
+        assert_eq!((playback.playhead_secs, playback.is_playing), (2.0, false));
+    }
+}

@@ -1,0 +1,74 @@
+//! What is different between a source clip and its result, in a few numbers.
+
+use std::collections::BTreeSet;
+
+use crate::clip::Clip;
+
+use super::sampled::rotation_at;
+use super::words::{counted, degrees};
+
+/// The sum of all passes.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Changes {
+    /// Joints with other numbers than before.
+    pub joints: usize,
+    /// Frames at which some joint has other numbers.
+    pub frames: usize,
+    /// The largest turn between before and after at a changed key, in degrees, and the joint's label.
+    pub largest_deg: f64,
+    /// The joint of the largest change.
+    pub largest_joint: Option<String>,
+}
+
+impl Changes {
+    /// The sum of the changes of two clips.
+    #[must_use]
+    pub fn and(&self, other: &Self) -> Self {
+        let larger = if other.largest_deg > self.largest_deg { other } else { self };
+        Self {
+            joints: self.joints + other.joints,
+            frames: self.frames + other.frames,
+            largest_deg: larger.largest_deg,
+            largest_joint: larger.largest_joint.clone(),
+        }
+    }
+
+    /// One sentence for people.
+    pub fn sentence(&self) -> String {
+        if self.joints == 0 {
+            return "Nothing is changed".to_owned();
+        }
+        let place = format!("{} of {}", counted(self.frames, "frame"), counted(self.joints, "joint"));
+        match &self.largest_joint {
+            Some(joint) if self.largest_deg >= 5e-3 => {
+                format!("{place} changed, at most by {} ({joint})", degrees(self.largest_deg))
+            }
+            _ => format!("{place} rewritten; no pose moves"),
+        }
+    }
+}
+
+/// Compares a source clip with its result.
+pub fn changes(source: &Clip, result: &Clip) -> Changes {
+    let mut found = Changes::default();
+    let mut frames = BTreeSet::new();
+    for joint in 0..result.joints.len() {
+        if source.same_joint(result, joint) {
+            continue;
+        }
+        found.joints += 1;
+        let (Some(before), Some(after)) = (source.rotation(joint), result.rotation(joint)) else { continue };
+        for key in after.changed_keys(before) {
+            let time = after.times.at(key);
+            frames.insert(result.grid.frame(time));
+            let turn =
+                rotation_at(source, joint, time).turn_to(rotation_at(result, joint, time)).to_degrees();
+            if turn > found.largest_deg {
+                found.largest_deg = turn;
+                found.largest_joint = Some(result.skeleton.label(joint).to_owned());
+            }
+        }
+    }
+    found.frames = frames.len();
+    found
+}

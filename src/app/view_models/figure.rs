@@ -1,0 +1,189 @@
+//! The skeleton view as the rasteriser takes it: poses, floor, tip path and camera at one time.
+
+use glam::{DAffine3, DVec3};
+
+use crate::clip::Clip;
+use crate::raster::{
+    Bounds, Camera, Figure, FigureStyle, Floor, Girth, SceneView, Theme, TipPath, limbs_of_skeleton,
+};
+use crate::skeleton::{Skeleton, Transform};
+use crate::snag::{Cancelled, Progress};
+
+use super::sampled::rotation_at;
+
+/// What stays the same for a clip whatever its time: the floor, and where the figure goes.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Stage {
+    /// The box around the figure at the start.
+    pub figure: Bounds,
+    /// The box around the figure at all times.
+    pub travel: Bounds,
+    /// How thick its limbs are.
+    pub girth: Girth,
+    /// The joint that carries it.
+    pub root: Option<usize>,
+}
+
+/// Poses looked at to find where the figure goes.
+const POSES: usize = 48;
+
+impl Stage {
+    /// Looks through a clip.
+    pub fn new(clip: &Clip) -> Self {
+        let nowhere = Bounds { min: DVec3::ZERO, max: DVec3::ONE };
+        let figure = bounds_at(clip, 0.0).unwrap_or(nowhere);
+        let times = (0..=POSES).map(|pose| clip.duration_secs * pose as f64 / POSES as f64);
+        let travel = times.filter_map(|time| bounds_at(clip, time)).fold(figure, |all, own| all.union(&own));
+        let root = clip.skeleton.listed().next();
+        Self { figure, travel, girth: Girth::of_skeleton(&clip.skeleton), root }
+    }
+
+    /// Whether the figure leaves the place where it starts.
+    pub fn walks(&self) -> bool {
+        self.travel.size() > 1.8 * self.figure.size()
+    }
+
+    /// How far the figure has gone over the floor since the start, level part only.
+    pub fn gone(&self, clip: &Clip, time_secs: f64) -> DVec3 {
+        let Some(root) = self.root else { return DVec3::ZERO };
+        let at = |time| scene_from_joint(clip, root, time).translation;
+        let way = at(time_secs) - at(0.0);
+        if way.is_finite() { DVec3::new(way.x, 0.0, way.z) } else { DVec3::ZERO }
+    }
+}
+
+/// The box around a pose.
+pub fn bounds_at(clip: &Clip, time_secs: f64) -> Option<Bounds> {
+    let world = clip.world_at(time_secs);
+    let limbs = limbs_of_skeleton(&clip.skeleton, &world);
+    Bounds::of_points(limbs.iter().flat_map(|limb| [limb.from, limb.to]))
+}
+
+/// One joint's frame in the scene, worked out along its ancestors alone.
+pub fn scene_from_joint(clip: &Clip, joint: usize, time_secs: f64) -> DAffine3 {
+    let joints = clip.skeleton.joints();
+    let mut affine = local(clip, joint, time_secs).to_affine();
+    let mut above = joints[joint].parent;
+    while let Some(parent) = above {
+        affine = local(clip, parent, time_secs).to_affine() * affine;
+        above = joints[parent].parent;
+    }
+    affine
+}
+
+fn local(clip: &Clip, joint: usize, time_secs: f64) -> Transform {
+    let rest = clip.skeleton.joints()[joint].rest;
+    let tracks = clip.joints.get(joint);
+    let place = tracks.and_then(|tracks| tracks.translation.as_ref()).and_then(|track| track.at(time_secs));
+    let size = tracks.and_then(|tracks| tracks.scale.as_ref()).and_then(|track| track.at(time_secs));
+    Transform {
+        translation: place.unwrap_or(rest.translation),
+        rotation: rotation_at(clip, joint, time_secs),
+        scale: size.unwrap_or(rest.scale),
+    }
+}
+
+/// The end of a joint's limb in its own frame: its first child, else its end point, else the joint itself.
+fn tip_of(skeleton: &Skeleton, joint: usize) -> DVec3 {
+    let child = skeleton.children(joint).first().map(|&child| skeleton.joints()[child].rest.translation);
+    child.or(skeleton.joints()[joint].tips.first().copied()).unwrap_or(DVec3::ZERO)
+}
+
+/// Where the tip of a joint's limb is at each frame.
+///
+/// # Errors
+/// When it is told to stop.
+pub fn tip_path(clip: &Clip, joint: usize, progress: &dyn Progress) -> Result<Vec<DVec3>, Cancelled> {
+    let tip = tip_of(&clip.skeleton, joint);
+    let count = clip.grid.count();
+    let mut points = Vec::with_capacity(count);
+    for frame in 0..count {
+        if frame % 1024 == 0 && !progress.report(frame, count) {
+            return Err(Cancelled);
+        }
+        points.push(scene_from_joint(clip, joint, clip.grid.time(frame)).transform_point3(tip));
+    }
+    Ok(points)
+}
+
+/// What decides the picture of the skeleton view.
+#[derive(Clone, Copy, Debug)]
+#[expect(clippy::struct_excessive_bools, reason = "independent switches of the view")]
+pub struct FigureRequest<'a> {
+    /// Size in pixels.
+    pub size_px: [usize; 2],
+    /// Pixels per point.
+    pub scale: f32,
+    /// From where, before it follows.
+    pub camera: Camera,
+    /// Colours.
+    pub theme: Theme,
+    /// The source clip.
+    pub source: &'a Clip,
+    /// The result.
+    pub result: &'a Clip,
+    /// When.
+    pub time_secs: f64,
+    /// The chosen joint.
+    pub chosen: Option<usize>,
+    /// The joint under the pointer.
+    pub hovered: Option<usize>,
+    /// Draw the source as well.
+    pub shows_before: bool,
+    /// Draw the source in place of the result.
+    pub source_alone: bool,
+    /// Go along with the figure.
+    pub follows: bool,
+    /// The way of the chosen joint's tip.
+    pub tip_path: Option<&'a [DVec3]>,
+}
+
+/// Frames of a tip's way that are drawn before and after the playhead: more would be a ball of wool.
+const PATH_FRAMES: usize = 240;
+
+/// The view to draw.
+pub fn figure_view(stage: &Stage, request: &FigureRequest<'_>) -> SceneView {
+    let FigureRequest { source, result, time_secs, .. } = *request;
+    let mut camera = request.camera;
+    if request.follows {
+        camera.target += stage.gone(result, time_secs);
+    }
+    let mut view = SceneView::new(request.size_px[0], request.size_px[1], camera, request.theme);
+    view.scale = request.scale;
+    let pose = |clip: &Clip, style| Figure {
+        girth: stage.girth,
+        chosen: request.chosen,
+        hovered: request.hovered,
+        ..Figure::new(limbs_of_skeleton(&clip.skeleton, &clip.world_at(time_secs)), style)
+    };
+    let shown = if request.source_alone { source } else { result };
+    let differs = !std::ptr::eq(source, result);
+    if request.shows_before && differs && !request.source_alone {
+        view.figures.push(Figure { chosen: None, hovered: None, ..pose(source, FigureStyle::Before) });
+    }
+    let style = if request.source_alone { FigureStyle::Before } else { FigureStyle::After };
+    let figure = pose(shown, style);
+    let under = Bounds { min: stage.travel.min, max: stage.travel.max };
+    let mut floor = Floor::under(&Bounds {
+        min: DVec3::new(stage.figure.min.x, under.min.y, stage.figure.min.z),
+        max: stage.figure.max,
+    });
+    if let Some(now) = figure.bounds() {
+        let middle = now.center();
+        floor.center.x = (middle.x / floor.step).round() * floor.step;
+        floor.center.z = (middle.z / floor.step).round() * floor.step;
+    }
+    view.floor = Some(floor);
+    view.figures.push(figure);
+    if let Some(points) = request.tip_path.filter(|points| !points.is_empty()) {
+        let now = result.grid.frame(time_secs).min(points.len() - 1);
+        let first = now.saturating_sub(PATH_FRAMES);
+        let last = (now + PATH_FRAMES + 1).min(points.len());
+        view.tip_paths.push(TipPath {
+            points: points[first..last].to_vec(),
+            current: Some(now - first),
+            color: request.theme.selection,
+        });
+    }
+    view
+}

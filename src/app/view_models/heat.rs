@@ -1,0 +1,294 @@
+//! The turn map: for each joint and frame how fast it turns, or how far the result is from the source.
+
+use std::ops::Range;
+
+use crate::clip::Clip;
+use crate::rotor::Rotor;
+use crate::snag::{Cancelled, Progress};
+
+use super::sampled::rotation_at;
+
+/// What the colours of the turn map stand for.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum HeatKind {
+    /// Degrees a second, of the result.
+    TurnRate,
+    /// Degrees between source and result.
+    Change,
+}
+
+impl HeatKind {
+    /// Its words on screen.
+    pub const fn label(self) -> &'static str {
+        match self {
+            Self::TurnRate => "Turn rate",
+            Self::Change => "Change",
+        }
+    }
+
+    /// Written behind its numbers.
+    pub const fn unit(self) -> &'static str {
+        match self {
+            Self::TurnRate => "°/s",
+            Self::Change => "°",
+        }
+    }
+}
+
+/// One joint's row: a code for each frame, and the largest of each [`FACTOR`] of them at each level above.
+///
+/// A code is one byte on a logarithmic scale, since it only becomes a colour; that keeps an hour of a hundred joints in
+/// memory.
+#[derive(Clone, Debug, PartialEq)]
+struct Row {
+    levels: Vec<Vec<u8>>,
+}
+
+const FACTOR: usize = 8;
+
+impl Row {
+    fn new(codes: Vec<u8>) -> Self {
+        let mut levels = vec![codes];
+        while let Some(top) = levels.last().filter(|top| top.len() > FACTOR) {
+            let next = top.chunks(FACTOR).map(|chunk| chunk.iter().copied().max().unwrap_or(0)).collect();
+            levels.push(next);
+        }
+        Self { levels }
+    }
+
+    fn largest(&self, frames: Range<usize>) -> u8 {
+        let (mut start, mut end) = (frames.start, frames.end.min(self.levels[0].len()));
+        let mut found = 0;
+        let largest = |codes: &[u8]| codes.iter().copied().max().unwrap_or(0);
+        for (level, codes) in self.levels.iter().enumerate() {
+            if start >= end {
+                return found;
+            }
+            if level + 1 == self.levels.len() || end - start < 2 * FACTOR {
+                return found.max(largest(&codes[start..end]));
+            }
+            let (whole_start, whole_end) = (start.div_ceil(FACTOR) * FACTOR, end / FACTOR * FACTOR);
+            found = found.max(largest(&codes[start..whole_start])).max(largest(&codes[whole_end..end]));
+            (start, end) = (whole_start / FACTOR, whole_end / FACTOR);
+        }
+        found
+    }
+}
+
+/// The rows of all listed joints.
+#[derive(Clone, Debug, PartialEq)]
+pub struct HeatMap {
+    /// What it shows.
+    pub kind: HeatKind,
+    /// The joints in the order of the skeleton.
+    pub joints: Vec<usize>,
+    /// The value that gets the hottest colour, in degrees (a second).
+    pub scale: HeatScale,
+    rows: Vec<Row>,
+    worst: Vec<f32>,
+}
+
+/// From values to shares of the colour scale.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct HeatScale {
+    /// The hottest value that is told apart, in degrees (a second).
+    pub top: f32,
+}
+
+impl HeatScale {
+    /// The share of the colour scale for a value: a square root, so that slow motion shows beside fast.
+    pub fn share(&self, value: f32) -> f32 {
+        (value / self.top).clamp(0.0, 1.0).sqrt()
+    }
+
+    /// The value at a share of the colour scale.
+    pub fn value(&self, share: f32) -> f32 {
+        share * share * self.top
+    }
+}
+
+/// The largest value a code can hold, and the value from which on codes grow like a logarithm.
+const MOST: f32 = 20_000.0;
+const KNEE: f32 = 1.0;
+
+fn code(value: f32) -> u8 {
+    if !(value > 0.0) {
+        return 0;
+    }
+    let share = (value / KNEE).ln_1p() / (MOST / KNEE).ln_1p();
+    (share * 255.0).round().clamp(1.0, 255.0) as u8
+}
+
+fn decode(code: u8) -> f32 {
+    ((f32::from(code) / 255.0 * (MOST / KNEE).ln_1p()).exp() - 1.0) * KNEE
+}
+
+impl HeatMap {
+    /// How many rows.
+    pub fn len(&self) -> usize {
+        self.rows.len()
+    }
+
+    /// Whether there are no rows.
+    pub fn is_empty(&self) -> bool {
+        self.rows.is_empty()
+    }
+
+    /// Share of the colour scale of the hottest of some frames of a row, 0 to 1.
+    pub fn share(&self, row: usize, frames: Range<usize>) -> f32 {
+        self.scale.share(decode(self.rows[row].largest(frames)))
+    }
+
+    /// Shares for every code, so that a picture needs no arithmetic per pixel.
+    pub fn shares(&self) -> [f32; 256] {
+        std::array::from_fn(|code| self.scale.share(decode(code as u8)))
+    }
+
+    /// The code of the hottest of some frames of a row.
+    pub fn code(&self, row: usize, frames: Range<usize>) -> u8 {
+        self.rows[row].largest(frames)
+    }
+
+    /// The hottest value of a row.
+    pub fn worst(&self, row: usize) -> f32 {
+        self.worst[row]
+    }
+}
+
+/// Computes the turn map of a result and its source. `known` is an older map with its source and result: rows of joints
+/// that are the same there are taken over.
+///
+/// # Errors
+/// When it is told to stop.
+pub fn heat_map(
+    source: &Clip,
+    result: &Clip,
+    kind: HeatKind,
+    known: Option<(&Clip, &Clip, &HeatMap)>,
+    progress: &dyn Progress,
+) -> Result<HeatMap, Cancelled> {
+    let joints: Vec<usize> = result.skeleton.listed().collect();
+    let known = known.filter(|(old_source, _, map)| {
+        std::ptr::eq(*old_source, source) && map.kind == kind && map.joints == joints
+    });
+    let (mut rows, mut worst, mut all) = (Vec::new(), Vec::new(), [0_usize; 256]);
+    for (place, &joint) in joints.iter().enumerate() {
+        if !progress.report(place, joints.len()) {
+            return Err(Cancelled);
+        }
+        let (row, hottest) = match known {
+            Some((_, old, map)) if old.same_joint(result, joint) => {
+                (map.rows[place].clone(), map.worst[place])
+            }
+            _ => {
+                let values = match kind {
+                    HeatKind::TurnRate => rates(result, joint),
+                    HeatKind::Change => differences(source, result, joint),
+                };
+                let codes = values.iter().map(|&value| code(value)).collect();
+                (Row::new(codes), values.into_iter().fold(0.0, f32::max))
+            }
+        };
+        for &code in &row.levels[0] {
+            all[usize::from(code)] += 1;
+        }
+        worst.push(hottest);
+        rows.push(row);
+    }
+    let top = match kind {
+        HeatKind::TurnRate => quantile(&all, 0.998).max(30.0),
+        HeatKind::Change => worst.iter().copied().fold(1.0, f32::max),
+    };
+    Ok(HeatMap { kind, joints, scale: HeatScale { top: round_up(top) }, rows, worst })
+}
+
+/// Degrees a second over the step that ends at each frame.
+fn rates(clip: &Clip, joint: usize) -> Vec<f32> {
+    let count = clip.grid.count();
+    let mut values = vec![0.0; count];
+    if clip.rotation(joint).is_none_or(|track| track.times.len() < 2) {
+        return values;
+    }
+    let mut last: Option<(f64, Rotor)> = None;
+    for (frame, value) in values.iter_mut().enumerate() {
+        let time = clip.grid.time(frame);
+        let rotor = rotation_at(clip, joint, time);
+        if let Some((last_time, last_rotor)) = last {
+            *value = (last_rotor.turn_to(rotor) / (time - last_time)).to_degrees() as f32;
+        }
+        last = Some((time, rotor));
+    }
+    if count > 1 {
+        values[0] = values[1];
+    }
+    values
+}
+
+fn differences(source: &Clip, result: &Clip, joint: usize) -> Vec<f32> {
+    let count = result.grid.count();
+    if source.same_joint(result, joint) {
+        return vec![0.0; count];
+    }
+    let times = (0..count).map(|frame| result.grid.time(frame));
+    times
+        .map(|time| {
+            rotation_at(source, joint, time).turn_to(rotation_at(result, joint, time)).to_degrees() as f32
+        })
+        .collect()
+}
+
+/// The value below which `share` of all codes above 0 lie.
+fn quantile(counts: &[usize; 256], share: f64) -> f32 {
+    let total: usize = counts[1..].iter().sum();
+    let mut below = 0;
+    for (code, &count) in counts.iter().enumerate().skip(1) {
+        below += count;
+        if below as f64 >= share * total as f64 {
+            return decode(code as u8);
+        }
+    }
+    0.0
+}
+
+/// The next of 1, 2, 5, 10, 20, 50 …
+fn round_up(value: f32) -> f32 {
+    let power = 10.0_f32.powf(value.max(1e-3).log10().floor());
+    [1.0, 2.0, 5.0, 10.0]
+        .into_iter()
+        .map(|step| step * power)
+        .find(|&step| step >= value * 0.999)
+        .unwrap_or(value)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn codes_keep_values_within_a_few_percent() {
+        for value in [0.5_f32, 3.0, 40.0, 720.0, 15_000.0] {
+            let back = decode(code(value));
+            assert!((back / value - 1.0).abs() < 0.05, "{value} came back as {back}");
+        }
+        assert_eq!(code(0.0), 0);
+        assert_eq!(code(f32::NAN), 0);
+        assert_eq!(code(1e9), 255);
+    }
+
+    #[test]
+    fn the_hottest_of_any_range_is_the_plain_maximum() {
+        let codes: Vec<u8> = (0..5000_u32).map(|i| ((i * 7919) % 251) as u8).collect();
+        let row = Row::new(codes.clone());
+        for (start, end) in [(0, 1), (3, 5), (7, 900), (64, 4096), (1, 5000), (4990, 6000), (9, 9)] {
+            let plain = codes[start..end.min(5000)].iter().copied().max().unwrap_or(0);
+            assert_eq!(row.largest(start..end), plain, "{start}..{end}");
+        }
+    }
+
+    #[test]
+    fn scales_end_on_round_numbers() {
+        for (value, round) in [(1.0, 1.0), (1.2, 2.0), (33.0, 50.0), (501.0, 1000.0)] {
+            assert_eq!(round_up(value), round);
+        }
+    }
+}

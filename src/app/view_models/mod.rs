@@ -1,0 +1,29 @@
+//! What the panels show, as plain data: no egui types, so that deriving it can be tested without a window.
+
+mod changes;
+mod curves;
+mod figure;
+mod heat;
+mod joint_numbers;
+mod joint_tree;
+mod memo;
+mod pass_rows;
+mod pyramid;
+mod sampled;
+mod snag_rows;
+mod time_window;
+mod words;
+
+pub use changes::{Changes, changes};
+pub use curves::{CurveLine, CurveSet, CurveView, curve_set};
+pub use figure::{FigureRequest, Stage, bounds_at, figure_view, scene_from_joint, tip_path};
+pub use heat::{HeatKind, HeatMap, HeatScale, heat_map};
+pub use joint_numbers::{JointNumbers, RotationNumbers, joint_numbers};
+pub use joint_tree::{TreeRow, tree_rows, worst_first};
+pub use memo::Memo;
+pub use pass_rows::{PassRow, pass_rows};
+pub use pyramid::Pyramid;
+pub use sampled::{SampleTimes, limb_direction, rotation_at};
+pub use snag_rows::{SnagFilter, SnagOrder, SnagRow, SnagState, snag_rows, snag_states};
+pub use time_window::{Tick, TimeWindow, ticks};
+pub use words::{counted, degrees, degrees_fixed, frames_text, rate_text, seconds};
