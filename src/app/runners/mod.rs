@@ -1,6 +1,6 @@
 //! Two ways to put a screen into a window.
 //!
-//! [`glow`] draws through a graphics driver. [`cpu`] draws with our own painter and needs none; it is several times
+//! `glow` draws through a graphics driver. `cpu` draws with our own painter and needs none; it is several times
 //! faster than a graphics driver that itself runs on the processor. The first is tried where the machine has a graphics
 //! device, the second takes over when that fails. `TURNWRIGHT_RUNNER=cpu` or `=gl` in the environment forces one.
 
