@@ -2,6 +2,7 @@
 
 #![deny(clippy::arithmetic_side_effects, clippy::indexing_slicing)]
 
+use crate::exchange::Note;
 use crate::exchange::decimal::short;
 
 use super::error::{BvhError, BvhErrorKind};
@@ -268,6 +269,13 @@ impl<'a> Scanner<'a> {
             last = byte;
         }
         (line, column)
+    }
+
+    /// Notes a text at its first place alone: a file may have a million of them, and lines are counted for each.
+    pub(super) fn tell_once(&self, notes: &mut Vec<Note>, at: usize, text: &str) {
+        if !notes.iter().any(|note| note.text == text) {
+            notes.push(Note::new(self.line_of(at), text));
+        }
     }
 
     /// `line 12` of a byte, for a note.

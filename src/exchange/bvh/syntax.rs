@@ -107,10 +107,11 @@ pub(super) fn hierarchy(
         match (keyword.as_slice(), block.kind) {
             (b"OFFSET", kind) => {
                 if std::mem::replace(&mut block.has_offset, true) {
-                    notes.push(Note::new(
-                        scanner.line_of(start),
+                    scanner.tell_once(
+                        notes,
+                        start,
                         "expected one OFFSET in a block, found another: the last is used",
-                    ));
+                    );
                     if kind == BlockKind::Tip
                         && let Some(joint) = owner.and_then(|joint| joints.get_mut(joint))
                     {
@@ -146,10 +147,10 @@ pub(super) fn hierarchy(
             (b"}", kind) => {
                 if !block.has_offset {
                     let what = match kind {
-                        BlockKind::Joint(_) => "OFFSET in every joint, found none: taken as 0 0 0",
-                        BlockKind::Tip => "OFFSET in every End Site, found none: left out",
+                        BlockKind::Joint(_) => "expected OFFSET in every joint, found none: taken as 0 0 0",
+                        BlockKind::Tip => "expected OFFSET in every End Site, found none: left out",
                     };
-                    notes.push(Note::new(scanner.line_of(block.start), format!("expected {what}")));
+                    scanner.tell_once(notes, block.start, what);
                 }
                 open.pop();
             }
@@ -253,10 +254,11 @@ fn channels(scanner: &mut Scanner<'_>, notes: &mut Vec<Note>) -> Result<Vec<Chan
             b"yrotation" => Channel::Rotation(Axis::Y),
             b"zrotation" => Channel::Rotation(Axis::Z),
             b"xscale" | b"yscale" | b"zscale" => {
-                notes.push(Note::new(
-                    scanner.line_of(start),
+                scanner.tell_once(
+                    notes,
+                    start,
                     "expected positions and rotations as channels, found a scale: kept and not used",
-                ));
+                );
                 Channel::Size
             }
             _ => {
@@ -290,7 +292,7 @@ pub(super) fn skip_comments(scanner: &mut Scanner<'_>, notes: &mut Vec<Note>) {
         first.get_or_insert(start);
     }
     if let Some(start) = first {
-        notes.push(Note::new(scanner.line_of(start), "found a comment: skipped"));
+        scanner.tell_once(notes, start, "found a comment: skipped");
     }
 }
 
@@ -342,11 +344,12 @@ pub(super) fn motion_head(
         scanner.skip(b':');
         scanner.skip_blanks_in_line();
         if scanner.peek().is_none_or(is_line_end) {
-            let what = if is_count { "a frame count" } else { "a frame time" };
-            notes.push(Note::new(
-                scanner.line_of(start),
-                format!("expected {what}, found the end of the line"),
-            ));
+            let text = if is_count {
+                "expected a frame count, found the end of the line"
+            } else {
+                "expected a frame time, found the end of the line"
+            };
+            scanner.tell_once(notes, start, text);
             continue;
         }
         let expected = if is_count { "a whole number of frames" } else { "a frame time in seconds" };

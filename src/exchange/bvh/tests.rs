@@ -383,6 +383,17 @@ fn counts_that_are_absurd_take_no_memory() {
     assert!(read(SMALL.replace("CHANNELS 3", "CHANNELS 4000000000").as_bytes(), "").is_err());
 }
 
+#[test]
+fn a_million_oddities_of_one_kind_are_told_once_and_cost_no_time() {
+    let offsets = format!("OFFSET 0 90 0{}", "\nOFFSET 0 90 0".repeat(100_000));
+    let comments = "# none\n\n".repeat(100_000);
+    let text =
+        SMALL.replacen("OFFSET 0 90 0", &offsets, 1).replacen("MOTION", &format!("{comments}MOTION"), 1);
+    let (_, clip, notes) = opened(text.replace("Frames: 2", &"Frames:\n".repeat(100_000)));
+    assert_eq!(clip.grid.count(), 2);
+    assert_eq!(notes.len(), 4, "{notes:?}");
+}
+
 /// Small and good enough here: Marsaglia 2003, "Xorshift RNGs".
 struct Random(u64);
 

@@ -188,9 +188,7 @@ pub(super) fn columns(
             _ if column == time => Role::Time,
             Some(role) => role,
             None => {
-                if !name.is_empty() {
-                    notes.push(unused(line, name));
-                }
+                tell_unused(notes, line, name);
                 Role::Unused
             }
         });
@@ -208,11 +206,13 @@ pub(super) fn columns(
     Ok(found)
 }
 
-fn unused(line: u32, name: &str) -> Note {
-    Note::new(
-        format!("line {line}, column {name}"),
-        "expected a part of a joint such as NAME.qx, found none: not used",
-    )
+/// Of a table with hundreds of other columns the first few are enough.
+fn tell_unused(notes: &mut Vec<Note>, line: u32, name: &str) {
+    const MOST: usize = 12;
+    if !name.is_empty() && notes.len() < MOST {
+        let text = "expected a part of a joint such as NAME.qx, found none: not used";
+        notes.push(Note::new(format!("line {line}, column {name}"), text));
+    }
 }
 
 /// A joint turns in one way, and a quaternion and plane angles are there in full.
@@ -319,8 +319,8 @@ fn one_joint(
         roles[column] = Role::Quaternion(0, part);
     }
     for (role, name) in roles.iter().zip(header) {
-        if *role == Role::Unused && !name.is_empty() {
-            notes.push(unused(line, name));
+        if *role == Role::Unused {
+            tell_unused(notes, line, name);
         }
     }
     Ok(Columns { roles, joints: vec!["sensor".to_owned()], unit })
