@@ -73,7 +73,7 @@ mod tests {
             if below(4) > 0 {
                 text.insert(below((digits as u64).saturating_add(1)) as usize, '.');
             }
-            text.insert_str(0, ["", "-", "+"][below(3) as usize]);
+            text.insert_str(0, ["", "-", "+"].get(below(3) as usize).unwrap());
             let found = short(text.as_bytes());
             match text.parse::<f64>() {
                 Ok(value) if digits <= 15 => {
