@@ -11,7 +11,6 @@ use super::container::{self, Chunk, Container};
 use super::document::{Document, Form, external_files};
 use super::error::GltfError;
 use super::json::At;
-use super::patch::Step;
 use super::uri::{self, Uri};
 use super::write::{Output, Writer, texts};
 
@@ -52,8 +51,8 @@ impl<'a> Writer<'a> {
             .map(|[at, length]| json!({ "buffer": home.index, "byteOffset": start + at, "byteLength": length }))
             .collect();
         let bin_name = matches!(home.keep, Keep::File).then(|| self.free_name(stem, home.index));
-        self.patch.extend(&[], "bufferViews", &texts(&views));
-        self.patch.extend(&[], "accessors", &texts(&self.accessors));
+        self.patch.extend(&self.patch.root(), "bufferViews", &texts(&views));
+        self.patch.extend(&self.patch.root(), "accessors", &texts(&self.accessors));
         let text = self.patch.finish();
         // What a moved buffer referred to may now be referred to by nobody.
         let patched: Value = serde_json::from_str(&text).unwrap_or_default();
@@ -82,12 +81,11 @@ impl<'a> Writer<'a> {
 
     /// Puts the length and place of the grown buffer into the document.
     fn set_buffer(&mut self, home: &Home<'_>, n_buffers: usize, length: usize, uri: Option<&str>) {
-        let at = [Step::Key("buffers"), Step::At(home.index)];
-        let old = At::root(&self.document.root).element("buffers", home.index).ok();
-        if old.is_some() {
-            self.patch.set(&at, "byteLength", &length.to_string());
+        let buffers = self.patch.elements_of(&self.patch.root(), "buffers");
+        if let Some(at) = buffers.get(home.index) {
+            self.patch.set(at, "byteLength", &length.to_string());
             if let Some(uri) = uri {
-                self.patch.set(&at, "uri", &Value::from(uri).to_string());
+                self.patch.set(at, "uri", &Value::from(uri).to_string());
             }
             return;
         }
@@ -96,7 +94,7 @@ impl<'a> Writer<'a> {
         if let Some(uri) = uri {
             buffer["uri"] = uri.into();
         }
-        self.patch.extend(&[], "buffers", &[buffer.to_string()]);
+        self.patch.extend(&self.patch.root(), "buffers", &[buffer.to_string()]);
     }
 
     /// Where new data goes: behind the binary chunk of a GLB; in a text behind the data that changed.
@@ -196,12 +194,12 @@ impl<'a> Writer<'a> {
         }
         let mut buffers = vec![json!({ "byteLength": data.len() })];
         buffers.append(&mut kept);
-        self.patch.set(&[], "buffers", &Value::from(buffers).to_string());
-        self.patch.set(&[], "bufferViews", &Value::from(views).to_string());
+        self.patch.set(&self.patch.root(), "buffers", &Value::from(buffers).to_string());
+        self.patch.set(&self.patch.root(), "bufferViews", &Value::from(views).to_string());
         if has_moved_images {
-            self.patch.set(&[], "images", &Value::from(images).to_string());
+            self.patch.set(&self.patch.root(), "images", &Value::from(images).to_string());
         }
-        self.patch.extend(&[], "accessors", &texts(&self.accessors));
+        self.patch.extend(&self.patch.root(), "accessors", &texts(&self.accessors));
         let text = self.patch.finish();
         let external = external_files(&serde_json::from_str(&text).unwrap_or_default());
         let bytes = rebuild_glb(document, &text, Some(data))?;

@@ -4,15 +4,6 @@
 
 use std::ops::Range;
 
-/// One step on the way into a document.
-#[derive(Clone, Copy, Debug)]
-pub(super) enum Step<'a> {
-    /// The member of an object.
-    Key(&'a str),
-    /// The element of a list.
-    At(usize),
-}
-
 /// Where a member of an object lies.
 struct Member {
     /// Its key, quotes included.
@@ -34,44 +25,56 @@ impl<'a> Patch<'a> {
         Self { text, edits: Vec::new() }
     }
 
-    /// Gives the object at `path` the member `key` with the JSON `value`, in place of the one it has or at its end.
-    /// An object that is not there stays away.
-    pub(super) fn set(&mut self, path: &[Step<'_>], key: &str, value: &str) {
-        let Some(object) = self.find(path) else { return };
-        let members = self.members(&object);
-        // Of repeated keys the last counts (section 2.7).
-        match members.iter().rev().find(|member| self.is_key(member, key)) {
-            Some(member) => self.edits.push((member.value.clone(), value.to_owned())),
-            None => self.insert(
-                &object,
-                members.last().map(|member| member.key.start..member.value.end),
-                &[format!("{}:{value}", quoted(key))],
-            ),
-        }
+    /// The whole document.
+    pub(super) fn root(&self) -> Range<usize> {
+        let start = skip_blank(self.text.as_bytes(), 0);
+        start..skip_value(self.text.as_bytes(), start)
     }
 
-    /// Puts the JSON `members`, `"key":value` each, in place of the member `key` of the object at `path`.
-    pub(super) fn replace_member(&mut self, path: &[Step<'_>], key: &str, members: &str) {
-        let Some(object) = self.find(path) else { return };
-        let all = self.members(&object);
+    /// The value of the member `key` of an object. Of repeated keys the last counts (section 2.7).
+    pub(super) fn member(&self, object: &Range<usize>, key: &str) -> Option<Range<usize>> {
+        self.members(object)
+            .into_iter()
+            .rev()
+            .find(|member| self.is_key(member, key))
+            .map(|member| member.value)
+    }
+
+    /// The elements of the list `key` of an object; none where there is no list.
+    pub(super) fn elements_of(&self, object: &Range<usize>, key: &str) -> Vec<Range<usize>> {
+        self.member(object, key).map_or(Vec::new(), |list| self.elements(&list))
+    }
+
+    /// Gives an object the member `key` with the JSON `value`, in place of the one it has or at its end.
+    pub(super) fn set(&mut self, object: &Range<usize>, key: &str, value: &str) {
+        if let Some(old) = self.member(object, key) {
+            self.edits.push((old, value.to_owned()));
+            return;
+        }
+        let last = self.members(object).pop().map(|member| member.key.start..member.value.end);
+        self.insert(object, last, &[format!("{}:{value}", quoted(key))]);
+    }
+
+    /// Puts the JSON `members`, `"key":value` each, in place of the member `key` of an object.
+    pub(super) fn replace_member(&mut self, object: &Range<usize>, key: &str, members: &str) {
+        let all = self.members(object);
         if let Some(member) = all.iter().rev().find(|member| self.is_key(member, key)) {
             self.edits.push((member.key.start..member.value.end, members.to_owned()));
         }
     }
 
-    /// Adds JSON `values` to the list `key` of the object at `path`; makes the list where there is none.
+    /// Adds JSON `values` to the list `key` of an object; makes the list where there is none.
     /// To be called once for each list.
-    pub(super) fn extend(&mut self, path: &[Step<'_>], key: &str, values: &[String]) {
+    pub(super) fn extend(&mut self, object: &Range<usize>, key: &str, values: &[String]) {
         if values.is_empty() {
             return;
         }
-        let to_list: Vec<Step<'_>> = path.iter().copied().chain([Step::Key(key)]).collect();
-        match self.find(&to_list) {
+        match self.member(object, key) {
             Some(list) => {
                 let last = self.elements(&list).pop();
                 self.insert(&list, last, values);
             }
-            None => self.set(path, key, &format!("[{}]", values.join(","))),
+            None => self.set(object, key, &format!("[{}]", values.join(","))),
         }
     }
 
@@ -103,22 +106,6 @@ impl<'a> Patch<'a> {
         let gap = &self.text[before + 1..last.start];
         let text: String = items.iter().flat_map(|item| [",", gap, item]).collect();
         self.edits.push((last.end..last.end, text));
-    }
-
-    /// Where the value at `path` lies.
-    fn find(&self, path: &[Step<'_>]) -> Option<Range<usize>> {
-        let start = skip_blank(self.text.as_bytes(), 0);
-        let mut at = start..skip_value(self.text.as_bytes(), start);
-        for step in path {
-            at = match step {
-                Step::Key(key) => {
-                    let members = self.members(&at);
-                    members.into_iter().rev().find(|member| self.is_key(member, key))?.value
-                }
-                Step::At(index) => self.elements(&at).into_iter().nth(*index)?,
-            };
-        }
-        Some(at)
     }
 
     fn is_key(&self, member: &Member, key: &str) -> bool {
@@ -233,13 +220,16 @@ mod tests {
     #[test]
     fn only_what_is_named_changes() {
         let mut patch = Patch::new(TEXT);
-        patch.set(&[Step::Key("a"), Step::At(0)], "x", "7");
-        patch.set(&[Step::Key("a"), Step::At(0)], "z", "8");
-        patch.extend(&[], "a", &["3".to_owned(), "4".to_owned()]);
-        patch.set(&[Step::Key("b")], "q", "true");
-        patch.extend(&[], "c", &["5".to_owned(), "6".to_owned()]);
-        patch.extend(&[], "a2", &["3".to_owned()]);
-        patch.extend(&[], "new", &["0".to_owned()]);
+        let root = patch.root();
+        let first = patch.elements_of(&root, "a").remove(0);
+        patch.set(&first, "x", "7");
+        patch.set(&first, "z", "8");
+        patch.extend(&root, "a", &["3".to_owned(), "4".to_owned()]);
+        let b = patch.member(&root, "b").unwrap();
+        patch.set(&b, "q", "true");
+        patch.extend(&root, "c", &["5".to_owned(), "6".to_owned()]);
+        patch.extend(&root, "a2", &["3".to_owned()]);
+        patch.extend(&root, "new", &["0".to_owned()]);
         let patched = patch.finish();
         assert_eq!(
             patched,
@@ -252,10 +242,10 @@ mod tests {
     #[test]
     fn of_repeated_keys_the_last_is_meant() {
         let mut patch = Patch::new(r#"{"a":1,"a":2}"#);
-        patch.set(&[], "a", "3");
+        patch.set(&patch.root(), "a", "3");
         assert_eq!(patch.finish(), r#"{"a":1,"a":3}"#);
         let mut patch = Patch::new(r#"{"m":[1,2],"n":4}"#);
-        patch.replace_member(&[], "m", r#""t":1,"r":2"#);
+        patch.replace_member(&patch.root(), "m", r#""t":1,"r":2"#);
         assert_eq!(patch.finish(), r#"{"t":1,"r":2,"n":4}"#);
     }
 

@@ -1,6 +1,7 @@
 //! Corrected clips back into their document: only what changed gets new data, everything else stays byte for byte.
 
 use std::collections::{BTreeMap, BTreeSet, HashMap};
+use std::ops::Range;
 
 use serde_json::{Value, json};
 
@@ -14,7 +15,7 @@ use super::document::{Binding, Document, Form};
 use super::error::GltfError;
 use super::json::At;
 use super::nodes;
-use super::patch::{Patch, Step};
+use super::patch::Patch;
 use super::tracks::Interpolation;
 
 /// A file ready to be put on disk.
@@ -77,6 +78,8 @@ struct Change {
 pub(super) struct Writer<'a> {
     pub(super) document: &'a Document,
     pub(super) patch: Patch<'a>,
+    /// Where each animation lies in the text.
+    animations: Vec<Range<usize>>,
     /// The new bytes, and views and accessors on them as JSON; views start from 0 within the new bytes.
     pub(super) data: Vec<u8>,
     pub(super) views: Vec<[usize; 2]>,
@@ -96,9 +99,11 @@ impl<'a> Writer<'a> {
         let root = At::root(&document.root);
         // The text was parsed, so it is UTF-8.
         let text = std::str::from_utf8(&document.original[document.container.json()]).unwrap_or_default();
+        let patch = Patch::new(text);
         Self {
             document,
-            patch: Patch::new(text),
+            animations: patch.elements_of(&patch.root(), "animations"),
+            patch,
             data: Vec::new(),
             views: Vec::new(),
             accessors: Vec::new(),
@@ -156,11 +161,19 @@ impl<'a> Writer<'a> {
     fn apply(&mut self, index: usize, changes: Vec<Change>) {
         let root = At::root(&self.document.root);
         let Ok(animation) = root.element("animations", index) else { return };
-        let path = [Step::Key("animations"), Step::At(index)];
+        let Some(place) = self.animations.get(index).cloned() else { return };
+        let [sampler_places, channel_places] =
+            ["samplers", "channels"].map(|key| self.patch.elements_of(&place, key));
         let mut new_samplers = Vec::new();
         let mut new_channels = Vec::new();
         let n_old_samplers = animation.count("samplers");
 
+        let mut uses = vec![0_usize; n_old_samplers];
+        for channel in animation.list("channels").unwrap_or_default() {
+            if let Ok(Some(sampler)) = channel.index("sampler", "samplers", &animation) {
+                uses[sampler] += 1;
+            }
+        }
         let mut cleared = BTreeSet::new();
         let mut by_sampler: BTreeMap<usize, Vec<(Binding, Change)>> = BTreeMap::new();
         for change in changes {
@@ -184,15 +197,9 @@ impl<'a> Writer<'a> {
             if self.buffer.is_none() {
                 self.buffer = buffer_of(&root, &old);
             }
-            let uses = animation
-                .list("channels")
-                .unwrap_or_default()
-                .iter()
-                .filter(|channel| channel.whole("sampler").ok().flatten() == Some(sampler))
-                .count();
             // Channels that shared the sampler and now want the same go on sharing it.
             let mut groups: Vec<Vec<(Binding, Change)>> = Vec::new();
-            let is_free = changes.len() == uses;
+            let is_free = changes.len() == uses[sampler];
             for change in changes {
                 match groups.iter_mut().find(|group| group[0].1.curve.is_same(&change.1.curve)) {
                     Some(group) => group.push(change),
@@ -206,7 +213,7 @@ impl<'a> Writer<'a> {
                 }
                 let new = self.sampler(old.value.clone(), change);
                 if number == 0 && is_free {
-                    let at = [path[0], path[1], Step::Key("samplers"), Step::At(sampler)];
+                    let at = sampler_places[sampler].clone();
                     for key in ["input", "output", "interpolation"] {
                         if new.get(key) != old.value.get(key)
                             && let Some(value) = new.get(key)
@@ -219,13 +226,13 @@ impl<'a> Writer<'a> {
                 new_samplers.push(new);
                 let number = (n_old_samplers + new_samplers.len() - 1).to_string();
                 for (binding, _) in group {
-                    let at = [path[0], path[1], Step::Key("channels"), Step::At(binding.channel)];
+                    let at = channel_places[binding.channel].clone();
                     self.patch.set(&at, "sampler", &number);
                 }
             }
         }
-        self.patch.extend(&path, "samplers", &texts(&new_samplers));
-        self.patch.extend(&path, "channels", &texts(&new_channels));
+        self.patch.extend(&place, "samplers", &texts(&new_samplers));
+        self.patch.extend(&place, "channels", &texts(&new_channels));
     }
 
     fn note_merged(&mut self, index: usize, change: &Change) {
@@ -299,7 +306,10 @@ impl<'a> Writer<'a> {
                 json!(rest.rotation.to_xyzw()),
                 json!(rest.scale.to_array())
             );
-            self.patch.replace_member(&[Step::Key("nodes"), Step::At(number)], "matrix", &members);
+            let places = self.patch.elements_of(&self.patch.root(), "nodes");
+            if let Some(place) = places.get(number) {
+                self.patch.replace_member(place, "matrix", &members);
+            }
         }
     }
 }
