@@ -26,14 +26,6 @@ pub(super) struct Offset {
 }
 
 impl Side {
-    /// The pose without the offset.
-    pub(super) fn without(self, pose: Rotor, offset: Rotor) -> Rotor {
-        match self {
-            Self::Bone => pose * offset.reverse(),
-            Self::Parent => offset.reverse() * pose,
-        }
-    }
-
     fn offset(self, truth: Rotor, pose: Rotor) -> Rotor {
         match self {
             Self::Bone => truth.reverse() * pose,

@@ -39,7 +39,7 @@ const LEAST_GAIN_IMPOSSIBLE: f64 = 3.0;
 const LEAST_PRODUCT: f64 = 60.0;
 
 /// From this product on a smaller gain will do, if the run lies off by all of the roughness.
-const CLEAR_PRODUCT: f64 = 160.0;
+const CLEAR_PRODUCT: f64 = 150.0;
 const LEAST_GAIN_CLEAR: f64 = 3.3;
 
 /// A run that ends further from where it began, in its own sizes, is a step and no spike.

@@ -2,11 +2,15 @@
 
 use std::sync::Arc;
 
+use serde_json::Value;
 use turnwright::clip::{Clip, FileAngles, FrameGrid, JointTracks, PathKind, Paths, RotationTrack, Times};
+use turnwright::exchange::{OpenOptions, open};
 use turnwright::mend::{self, Survey, SurveyOptions};
 use turnwright::rotor::{Axis, EulerOrder, Rotor};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 use turnwright::snag::{Cancelled, Progress, Remedy, Snag, SnagKind, Unwatched};
+
+use crate::support::{shared, shared_json};
 
 /// A clip of one joint per track, all roots, 30 frames a second.
 fn clip_of(tracks: Vec<RotationTrack>) -> Clip {
@@ -306,4 +310,234 @@ fn a_survey_can_be_stopped() {
     }
     let clip = clip_of((0..4).map(|_| angles(calm(50))).collect());
     assert_eq!(mend::survey(&clip, &SurveyOptions::default(), &Stop).err(), Some(Cancelled));
+}
+
+/// A record of `natural_faults.json` and the snags of its clip.
+struct Known {
+    file: String,
+    record: Value,
+    joint: Option<usize>,
+    clip: Arc<Clip>,
+    survey: Arc<Survey>,
+}
+
+impl Known {
+    fn text(&self, field: &str) -> &str {
+        self.record[field].as_str().unwrap_or("")
+    }
+
+    /// The frame after the step.
+    fn frame(&self) -> usize {
+        let time = self.record["t"].as_f64();
+        match self.record["frame"].as_u64().or(self.record["worst_row"].as_u64()) {
+            Some(frame) => frame as usize,
+            None => self.clip.grid.frame(time.expect("a glTF record has a time")),
+        }
+    }
+
+    /// Whether a snag of one of these kinds begins at the step or ends before it.
+    fn is_border_of(&self, kinds: &[SnagKind]) -> bool {
+        let frame = self.frame();
+        self.survey.snags.iter().any(|snag| {
+            Some(snag.joint) == self.joint
+                && kinds.contains(&snag.kind)
+                && (snag.first_frame == frame || self.frame_of_key(snag.last_key + 1) == Some(frame))
+        })
+    }
+
+    fn frame_of_key(&self, key: usize) -> Option<usize> {
+        let times = &self.clip.rotation(self.joint?)?.times;
+        (key < times.len()).then(|| self.clip.grid.frame(times.at(key)))
+    }
+
+    fn is_inside(&self, kinds: &[SnagKind]) -> bool {
+        let inside = |snag: &&Snag| Some(snag.joint) == self.joint && kinds.contains(&snag.kind);
+        self.survey.snags.iter().filter(inside).any(|snag| snag.covers(self.frame()))
+    }
+}
+
+fn known_faults() -> Option<Vec<Known>> {
+    let list = shared_json("data/natural_faults.json")?;
+    let mut known = Vec::new();
+    for (file, records) in list.as_object().unwrap() {
+        let source = open(&shared(&format!("data/{file}"))?, &OpenOptions::default()).unwrap();
+        let surveys: Vec<Arc<Survey>> = source.clips.iter().map(|clip| Arc::new(all(clip))).collect();
+        for record in records.as_array().unwrap() {
+            let name = record["anim"].as_str();
+            let index =
+                name.and_then(|name| source.clips.iter().position(|clip| clip.name == name)).unwrap_or(0);
+            let clip = source.clips[index].clone();
+            let joint = record["joint"].as_str().and_then(|name| clip.skeleton.find(name));
+            let survey = surveys[index].clone();
+            known.push(Known { file: file.clone(), record: record.clone(), joint, clip, survey });
+        }
+    }
+    Some(known)
+}
+
+#[test]
+fn the_natural_faults_of_the_real_files_are_found() {
+    let Some(known) = known_faults() else { return };
+    let mut missing = Vec::new();
+    let mut counted = [0; 4];
+    for fault in &known {
+        let (kind, found) = match fault.text("kind") {
+            "sign_flip" => (0, fault.is_border_of(&[SnagKind::SignFlip])),
+            // Inside the dance's flips a step of numbers can also be the flip itself.
+            "euler_wrap" => {
+                let kinds = [SnagKind::Wrap, SnagKind::MirroredAngles, SnagKind::HalfTurn];
+                (1, fault.is_border_of(&kinds))
+            }
+            "gimbal_branch_flip" => (2, fault.is_border_of(&[SnagKind::MirroredAngles])),
+            "non_unit" => (3, fault.is_inside(&[SnagKind::BrokenValue])),
+            _ => continue,
+        };
+        counted[kind] += 1;
+        if !found {
+            missing.push(format!("{} {}", fault.file, fault.record));
+        }
+    }
+    println!("sign flips, wraps, branch flips, lengths: {counted:?}");
+    assert!(counted.iter().all(|count| *count > 0));
+    assert!(missing.is_empty(), "{} missing:\n{}", missing.len(), missing.join("\n"));
+}
+
+/// Frames at which the sources page names a flip or spike of the dance's joints.
+const DANCE: [(SnagKind, &str, &[usize]); 5] = [
+    (SnagKind::HalfTurn, "RightUpLeg", &[121, 128, 146, 156, 165, 175, 192, 432, 459, 466]),
+    (SnagKind::HalfTurn, "RightFoot", &[121, 128, 146, 156, 165, 175, 192, 432, 459, 466]),
+    (SnagKind::Spike, "RightToeBase", &[262, 368, 491, 540]),
+    (SnagKind::Spike, "LeftArm", &[93]),
+    (SnagKind::Spike, "LeftHand", &[509]),
+];
+
+#[test]
+fn the_flips_and_spikes_of_the_dance_are_found() {
+    let Some(path) = shared("data/bvh/cmu_05_06_dance.bvh") else { return };
+    let clip = open(&path, &OpenOptions::default()).unwrap().clips.remove(0);
+    let survey = all(&clip);
+    for (kind, joint, frames) in DANCE {
+        let own: Vec<&Snag> = survey
+            .snags
+            .iter()
+            .filter(|snag| snag.kind == kind && clip.skeleton.label(snag.joint) == joint)
+            .collect();
+        for frame in frames {
+            let is_told = own.iter().any(|snag| match kind {
+                SnagKind::HalfTurn => snag.first_frame == *frame || snag.last_frame + 1 == *frame,
+                _ => snag.covers(*frame),
+            });
+            assert!(is_told, "{kind} of {joint} at frame {frame} is missing");
+        }
+    }
+    // Mended, the hip goes on where it jumped, but for the two ways in and out that are half a flip.
+    let hip = clip.skeleton.find("RightUpLeg").unwrap();
+    let widest = |clip: &Clip| {
+        let track = clip.rotation(hip).unwrap();
+        (1..track.keys.len())
+            .map(|key| track.keys[key - 1].turn_to(track.keys[key]))
+            .fold(0.0, f64::max)
+            .to_degrees()
+    };
+    println!("widest step of the hip: {:.1}° before, {:.1}° after", widest(&clip), widest(&survey.mended));
+    assert!(widest(&clip) > 170.0);
+    assert!(widest(&survey.mended) < 35.0);
+}
+
+/// Files of honest fast motion, and files of sound captures: nothing in them is a half-turn, a spike or a long way.
+const HONEST: [&str; 15] = [
+    "gltf/wasp.glb",
+    "gltf/wolf.glb",
+    "gltf/biped23_movement_clips.glb",
+    "gltf/Fox.glb",
+    "gltf/Fox_gltfpack.glb",
+    "gltf/node_character.glb",
+    "csv/humanoid3d_backflip_quat.csv",
+    "csv/humanoid3d_cartwheel_quat.csv",
+    "csv/humanoid3d_spinkick_quat.csv",
+    "bvh/cmu_02_01_walk.bvh",
+    "bvh/zxy_19joints_30fps.bvh",
+    "bvh/walk01.bvh",
+    "bvh/xyz_affective_walk.bvh",
+    "bvh/yxz_23joints_120fps.bvh",
+    "bvh/mixed_order_6ch.bvh",
+];
+
+#[test]
+fn honest_fast_motion_is_left_alone() {
+    let moving = [SnagKind::LongWay, SnagKind::HalfTurn, SnagKind::Spike];
+    let mut wrong = Vec::new();
+    let (mut minutes, mut untouched) = (0.0, 0);
+    for file in HONEST {
+        let Some(path) = shared(&format!("data/{file}")) else { return };
+        for clip in open(&path, &OpenOptions::default()).unwrap().clips {
+            let survey = all(&clip);
+            minutes += clip.duration_secs / 60.0 * clip.skeleton.listed().count() as f64;
+            for snag in survey.snags.iter().filter(|snag| moving.contains(&snag.kind)) {
+                wrong.push(format!("{file}#{}: {}", clip.name, snag.text));
+            }
+            // What no snag was found in is the very same.
+            for joint in 0..clip.joints.len() {
+                if survey.snags.iter().all(|snag| snag.joint != joint || snag.remedy == Remedy::Ask) {
+                    assert!(Arc::ptr_eq(&clip.joints[joint], &survey.mended.joints[joint]));
+                    untouched += 1;
+                }
+            }
+        }
+    }
+    println!("{} wrong in {minutes:.1} joint minutes; {untouched} joints untouched", wrong.len());
+    assert!(wrong.is_empty(), "{}", wrong.join("\n"));
+}
+
+#[test]
+fn mends_of_numbers_change_no_pose_and_every_mend_keeps_the_rest() {
+    for file in ["bvh/cmu_05_06_dance.bvh", "gltf/wolf.glb", "gltf/biped23_movement_clips.glb"] {
+        let Some(path) = shared(&format!("data/{file}")) else { return };
+        for clip in open(&path, &OpenOptions::default()).unwrap().clips {
+            let survey = all(&clip);
+            let mut working = (*clip).clone();
+            let mut in_order: Vec<&Snag> = survey.snags.iter().collect();
+            in_order.sort_by_key(|snag| (snag.kind, snag.joint, snag.first_key, snag.last_key));
+            for snag in in_order {
+                let before = working;
+                working = mend::apply(&before, snag).unwrap();
+                for joint in (0..before.joints.len()).filter(|joint| *joint != snag.joint) {
+                    assert!(Arc::ptr_eq(&before.joints[joint], &working.joints[joint]));
+                }
+                let (old, new) =
+                    (before.rotation(snag.joint).unwrap(), working.rotation(snag.joint).unwrap());
+                for key in new.changed_keys(old) {
+                    assert!((snag.first_key..=snag.last_key).contains(&key), "{}: key {key}", snag.text);
+                }
+                if matches!(snag.kind, SnagKind::SignFlip | SnagKind::Wrap | SnagKind::MirroredAngles) {
+                    for i in 0..200 {
+                        let secs = clip.duration_secs * f64::from(i) / 199.0;
+                        assert!(old.at(secs).turn_to(new.at(secs)) < 1e-9, "{} at {secs} s", snag.text);
+                    }
+                    if let Some(angles) = new.file_angles() {
+                        for key in snag.first_key..=snag.last_key {
+                            let error = angles.rotor(angles.degrees[key]).turn_to(new.keys[key]);
+                            assert!(error < 1e-9, "{}: key {key} off by {error}", snag.text);
+                        }
+                    }
+                }
+            }
+            assert_eq!(working.joints, survey.mended.joints, "{file}#{}", clip.name);
+            // What is mended stays mended: nothing of the numeric kinds is left.
+            let again = all(&survey.mended);
+            let left: Vec<&str> = again
+                .snags
+                .iter()
+                .filter(|snag| snag.kind <= SnagKind::MirroredAngles && snag.remedy != Remedy::Ask)
+                .map(|snag| snag.text.as_str())
+                .collect();
+            println!(
+                "{file}#{}: {} snags, then {} ({} numeric)",
+                clip.name,
+                survey.snags.len(),
+                again.snags.len(),
+                left.len()
+            );
+        }
+    }
 }
