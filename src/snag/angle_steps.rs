@@ -1,6 +1,8 @@
 //! Steps of a stored angle over half a turn, told apart: a wrap while the joint hardly moves, or a real move that the
 //! file may mean.
 
+use std::collections::BTreeMap;
+
 use crate::clip::FileAngles;
 
 use super::branches::{Branches, follow, short};
@@ -55,17 +57,9 @@ pub(super) struct SortedSteps {
 pub(super) fn sorted_steps(scan: &Scan<'_>, angles: &FileAngles) -> SortedSteps {
     let branches = follow(scan, angles);
     let steps = angle_steps(scan, angles, &branches);
-    let mut sorted = SortedSteps::default();
-    let mut add = |(first, last): (usize, usize), channel: usize, turns: i32| {
-        let wraps = &mut sorted.wraps;
-        match wraps.iter_mut().rev().find(|run| (run.0, run.1) == (first, last)) {
-            Some(run) => run.2[channel] = turns,
-            None => {
-                let mut all = [0; 3];
-                all[channel] = turns;
-                wraps.push((first, last, all));
-            }
-        }
+    let mut wraps: BTreeMap<(usize, usize), [i32; 3]> = BTreeMap::new();
+    let mut add = |run: (usize, usize), channel: usize, turns: i32| {
+        wraps.entry(run).or_default()[channel] = turns;
     };
     let mut moves = Vec::new();
     for channel in 0..3 {
@@ -97,10 +91,9 @@ pub(super) fn sorted_steps(scan: &Scan<'_>, angles: &FileAngles) -> SortedSteps 
             }
         }
     }
-    sorted.wraps.sort_unstable();
     moves.sort_by_key(|step| (step.key, step.channel));
-    sorted.moves = moves;
-    sorted
+    let wraps = wraps.into_iter().map(|((first, last), turns)| (first, last, turns)).collect();
+    SortedSteps { wraps, moves }
 }
 
 /// Whether the angle of the first keys has its sign alone: no later step comes back to it.

@@ -78,7 +78,9 @@ pub(super) fn follow(scan: &Scan<'_>, angles: &FileAngles) -> Branches {
 /// Of the two rows that mirror each other, takes the one that keeps the first key, or the usual range.
 fn settle_side(angles: &FileAngles, mirrored: &mut [bool]) {
     if mirrored.first() == Some(&true) {
-        mirrored.iter_mut().for_each(|own| *own = !*own);
+        for own in mirrored.iter_mut() {
+            *own = !*own;
+        }
     }
     let usual = |key: usize| {
         let middle = angles.degrees[key][1];
@@ -92,7 +94,9 @@ fn settle_side(angles: &FileAngles, mirrored: &mut [bool]) {
     }
     let [kept, other] = sides;
     if other[1] > 0 && kept[0] * 2 < kept[1] && other[0] * 2 > other[1] {
-        mirrored.iter_mut().for_each(|own| *own = !*own);
+        for own in mirrored.iter_mut() {
+            *own = !*own;
+        }
     }
 }
 

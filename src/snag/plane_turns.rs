@@ -46,7 +46,9 @@ pub(super) fn plane_runs(scan: &Scan<'_>, degrees: &[[f64; 3]]) -> Vec<PlaneRun>
         let wide_start = (0..first_off).filter(|&key| wide(key)).count();
         let wide_rest = (first_off..off.len()).filter(|&key| wide(key)).count();
         if wide_start * 2 > first_off && wide_rest * 2 < off.len() - first_off {
-            off.iter_mut().for_each(|off| *off = !*off);
+            for off in &mut off {
+                *off = !*off;
+            }
         }
     }
     super::scan::runs(off.iter().map(|&off| off.then_some(())))

@@ -127,7 +127,9 @@ fn usual(poses: &[Rotor], residual: &[f64], near: Range<usize>, without: Range<u
         return Usual::default();
     }
     let median = take(&mut own, 0.5);
-    own.iter_mut().for_each(|value| *value = (*value - median).abs());
+    for value in &mut own {
+        *value = (*value - median).abs();
+    }
     let spread = SIGMA_PER_MAD * take(&mut own, 0.5);
     let mut steps: Vec<f64> = keys
         .filter(|key| !without.contains(&(key + 1)))

@@ -44,9 +44,11 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
         })
         .collect();
     if starts_wrong(&signs) {
-        signs.iter_mut().for_each(|sign| *sign = !*sign);
+        for sign in &mut signs {
+            *sign = !*sign;
+        }
     }
-    for (first, last, _) in runs(signs.iter().map(|&sign| sign.then_some(()))) {
+    for (first, last, ()) in runs(signs.iter().map(|&sign| sign.then_some(()))) {
         snags.push(flipped(&scan, first, last));
     }
     snags

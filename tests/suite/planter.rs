@@ -1,4 +1,9 @@
 //! Faults of every kind, planted with known truth into sound joints of the real clips, and what is found and mended of them.
+#![expect(
+    clippy::unwrap_used,
+    clippy::print_stdout,
+    reason = "a helper fails its test, and the figures are what the test is for"
+)]
 
 use std::collections::BTreeMap;
 use std::sync::Arc;
@@ -127,22 +132,19 @@ fn run(random: &mut Random, count: usize, least: usize, most: usize, margin: usi
 
 /// Keys with other poses; a file's angles are taken as an exporter would write them, each frame by itself.
 fn with_poses(track: &RotationTrack, first: usize, poses: &[Rotor]) -> RotationTrack {
-    match &track.stored {
-        Stored::Angles(angles) => {
-            let triples: Vec<(usize, [f64; 3])> = poses
-                .iter()
-                .enumerate()
-                .map(|(i, pose)| (first + i, angles.order.from_rotor(*pose, 0.0).map(f64::to_degrees)))
-                .collect();
-            track.with_angles(&triples)
+    if let Stored::Angles(angles) = &track.stored {
+        let triples: Vec<(usize, [f64; 3])> = poses
+            .iter()
+            .enumerate()
+            .map(|(i, pose)| (first + i, angles.order.from_rotor(*pose, 0.0).map(f64::to_degrees)))
+            .collect();
+        track.with_angles(&triples)
+    } else {
+        let mut keys = track.keys.to_vec();
+        for (i, pose) in poses.iter().enumerate() {
+            keys[first + i] = pose.aligned_to(keys[(first + i).saturating_sub(1)]);
         }
-        _ => {
-            let mut keys = track.keys.to_vec();
-            for (i, pose) in poses.iter().enumerate() {
-                keys[first + i] = pose.aligned_to(keys[(first + i).saturating_sub(1)]);
-            }
-            RotationTrack { keys: keys.into(), ..track.clone() }
-        }
+        RotationTrack { keys: keys.into(), ..track.clone() }
     }
 }
 
@@ -165,15 +167,12 @@ fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Opti
             let off = |rotor: Rotor| {
                 if unusable { Rotor::new(f64::NAN, 0.0, 0.0, 0.0) } else { rotor.scale(scale) }
             };
-            let broken = match &track.stored {
-                Stored::Angles(_) => {
-                    track.with_angles(&(first..=last).map(|key| (key, [f64::NAN; 3])).collect::<Vec<_>>())
-                }
-                _ => {
-                    let mut keys = track.keys.to_vec();
-                    keys[first..=last].iter_mut().for_each(|key| *key = off(*key));
-                    RotationTrack { keys: keys.into(), ..track.clone() }
-                }
+            let broken = if let Stored::Angles(_) = &track.stored {
+                track.with_angles(&(first..=last).map(|key| (key, [f64::NAN; 3])).collect::<Vec<_>>())
+            } else {
+                let mut keys = track.keys.to_vec();
+                keys[first..=last].iter_mut().for_each(|key| *key = off(*key));
+                RotationTrack { keys: keys.into(), ..track.clone() }
             };
             (broken, planted((first, last)))
         }

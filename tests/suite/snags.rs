@@ -1,4 +1,5 @@
 //! Snags and mends: built clips in which one thing is wrong, and the real files with what is known to be wrong in them.
+#![expect(clippy::unwrap_used, reason = "a helper fails its test, and the figures are what the test is for")]
 
 use std::sync::Arc;
 
