@@ -531,6 +531,11 @@ fn every_damage_of_the_container_is_told_with_its_place() {
     fails("no UTF-8", b"{\"asset\":\"\xFF\"}", "JSON line 1 column");
     let deep = format!("{{\"asset\":{}", "[".repeat(100_000));
     fails("deep JSON", deep.as_bytes(), "expected valid JSON, found recursion limit exceeded");
+    fails(
+        "an unknown member",
+        br#"{"asset":{"version":"2.0"},"zzz":[1,}"#,
+        "JSON line 1 column 37: expected valid JSON",
+    );
     fails("two documents", b"{} {}", "JSON line 1 column 4: expected valid JSON, found trailing characters");
     fails(
         "a number beyond all",

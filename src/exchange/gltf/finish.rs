@@ -10,7 +10,7 @@ use super::buffers::Loaded;
 use super::container::{self, Chunk, Container};
 use super::document::{Document, Form, external_files};
 use super::error::GltfError;
-use super::json::At;
+use super::json::{self, At};
 use super::uri::{self, Uri};
 use super::write::{Output, Writer, texts};
 
@@ -55,7 +55,7 @@ impl<'a> Writer<'a> {
         self.patch.extend(&self.patch.root(), "accessors", &texts(&self.accessors));
         let text = self.patch.finish();
         // What a moved buffer referred to may now be referred to by nobody.
-        let patched: Value = serde_json::from_str(&text).unwrap_or_default();
+        let patched = json::parse(text.as_bytes()).unwrap_or_default();
         let mut external = external_files(&patched);
         external.retain(|file| Some(file) != bin_name.as_ref());
         let (bytes, bin) = match form {
@@ -201,7 +201,7 @@ impl<'a> Writer<'a> {
         }
         self.patch.extend(&self.patch.root(), "accessors", &texts(&self.accessors));
         let text = self.patch.finish();
-        let external = external_files(&serde_json::from_str(&text).unwrap_or_default());
+        let external = external_files(&json::parse(text.as_bytes()).unwrap_or_default());
         let bytes = rebuild_glb(document, &text, Some(data))?;
         Ok(Output { bytes, bin: None, external, notes: self.notes })
     }

@@ -2,12 +2,60 @@
 
 #![deny(clippy::arithmetic_side_effects, clippy::indexing_slicing)]
 
-use serde_json::Value;
+use std::fmt;
+
+use serde::de::{Deserializer, IgnoredAny, MapAccess, Visitor};
+use serde_json::{Map, Value};
 
 use super::error::GltfError;
 
+/// The members that animation has to do with. The writer changes the text itself, so all others may stay text.
+const READ_MEMBERS: [&str; 9] = [
+    "accessors",
+    "animations",
+    "asset",
+    "bufferViews",
+    "buffers",
+    "extensionsRequired",
+    "images",
+    "nodes",
+    "skins",
+];
+
 /// Whole numbers up to here are exact in any JSON reader.
 const LARGEST_WHOLE: f64 = 9_007_199_254_740_992.0;
+
+/// Parses a document. Of its members only those of [`READ_MEMBERS`] are kept: meshes and whatever else a file is full
+/// of take no memory. A document that is no object is an error.
+pub(super) fn parse(text: &[u8]) -> serde_json::Result<Value> {
+    struct Members;
+
+    impl<'de> Visitor<'de> for Members {
+        type Value = Map<String, Value>;
+
+        fn expecting(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+            f.write_str("a JSON object")
+        }
+
+        fn visit_map<A: MapAccess<'de>>(self, mut map: A) -> Result<Self::Value, A::Error> {
+            let mut members = Map::new();
+            while let Some(key) = map.next_key::<String>()? {
+                if READ_MEMBERS.contains(&key.as_str()) {
+                    // Of repeated keys the last counts (section 2.7).
+                    members.insert(key, map.next_value()?);
+                } else {
+                    map.next_value::<IgnoredAny>()?;
+                }
+            }
+            Ok(members)
+        }
+    }
+
+    let mut deserializer = serde_json::Deserializer::from_slice(text);
+    let members = deserializer.deserialize_map(Members)?;
+    deserializer.end()?;
+    Ok(Value::Object(members))
+}
 
 /// A JSON value and its path in the document.
 #[derive(Clone, Debug)]

@@ -15,7 +15,7 @@ use super::channels::{self, Channels, Part};
 use super::container::Container;
 use super::document::{Animation, Binding, Document};
 use super::error::GltfError;
-use super::json::At;
+use super::json::{self, At};
 use super::nodes;
 use super::rate;
 use super::tracks::{Track, Tracks};
@@ -142,16 +142,12 @@ fn parse(json: &[u8]) -> Result<Value, GltfError> {
     // Some writers pad the chunk with zeros in place of blanks.
     let padding = json.iter().rev().take_while(|byte| **byte == 0).count();
     let text = &json[..json.len() - padding];
-    let value: Value = serde_json::from_slice(text).map_err(|error| {
+    json::parse(text).map_err(|error| {
         let place = format!("JSON line {} column {}", error.line(), error.column());
         let full = error.to_string();
         let found = full.rsplit_once(" at line ").map_or(full.as_str(), |(message, _)| message);
         GltfError::unlike(place, "valid JSON", found)
-    })?;
-    if value.is_object() {
-        return Ok(value);
-    }
-    Err(GltfError::unlike("document", "a JSON object", "something else"))
+    })
 }
 
 fn check_asset(root: &At<'_>, notes: &mut Vec<Note>) -> Result<(), GltfError> {
