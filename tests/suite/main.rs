@@ -11,6 +11,7 @@
 //! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
 //! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
 //! | `golden` | comparing a picture with the one a person accepted |
+//! | `layers` | layers point down only, and the window's libraries stay in `app` |
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
@@ -39,6 +40,7 @@ mod gui_paint;
 mod gui_screen;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
+mod layers;
 mod planter;
 mod raster;
 mod rotor_checks;
