@@ -351,7 +351,7 @@ fn swinging_clip(fault: bool) -> Clip {
             let swing = reach_rad * (frame as f64 / 60.0 * 2.0 * PI).sin();
             let is_off = fault && joint == elbow && (40..43).contains(&frame);
             let off = if is_off { PI } else { 0.0 };
-            Rotor::from_plane_angles(Bivector { yz: off, zx: 0.0, xy: 0.0 })
+            Rotor::from_plane_angles(Bivector { yz: 0.0, zx: off, xy: 0.0 })
                 * Rotor::from_plane_angles(Bivector { yz: 0.0, zx: 0.0, xy: -swing })
         };
         let keys: Vec<Rotor> = (0..grid.count()).map(key).collect();
