@@ -5,15 +5,15 @@ use glam::{DVec3, Vec2};
 use crate::clip::Clip;
 use crate::raster::camera::Camera;
 use crate::raster::canvas::Canvas;
-use crate::raster::chart::{Area, SnagMark};
+use crate::raster::chart::{Area, SMALL, SnagMark, draw_letter};
 use crate::raster::figure::{Figure, FigureStyle, Girth, limbs_of_skeleton};
 use crate::raster::image::Image;
 use crate::raster::palette::Theme;
 use crate::raster::sheet::{Moment, StripStyle, contact_strip};
-use crate::raster::text::{TextStyle, draw_text, elide};
-use crate::raster::turn_map::{MapRow, TurnMap, draw_turn_map, full_scale, turn_map_height};
+use crate::raster::text::{TextStyle, draw_text, draw_text_centered, elide, text_width};
+use crate::raster::turn_map::{KEY_MIDDLE, MapRow, TurnMap, draw_turn_map, full_scale, turn_map_height};
 use crate::rotor::Rotor;
-use crate::snag::Snag;
+use crate::snag::{Snag, SnagKind};
 
 /// The pose of a clip at a time.
 pub fn figure_of_clip(clip: &Clip, time_secs: f64, style: FigureStyle) -> Figure {
@@ -84,9 +84,10 @@ pub struct ClipPage<'a> {
     pub title: String,
     /// The clip: the result where there is one.
     pub clip: &'a Clip,
-    /// The source, drawn thin and grey behind it.
+    /// The source of the result. Its poses are drawn thin and grey, and the turn map is the source's: there one sees
+    /// what was wrong.
     pub before: Option<&'a Clip>,
-    /// Snags of the clip, or of its source.
+    /// Snags of the source, or of the clip where there is none.
     pub snags: &'a [Snag],
     /// Times of the figures, seconds.
     pub times_secs: Vec<f64>,
@@ -122,21 +123,46 @@ pub fn clip_page(page: &ClipPage<'_>) -> Image {
     let map = has_map.then(|| page_map(page));
     let map_height = map.as_ref().map_or(0.0, |map| turn_map_height(map, scale).min(area.height * 0.52));
     let gap = if has_map { 12.0 * scale } else { 0.0 };
-    draw_figures_row(&mut canvas, area.inset(0.0, 0.0, 0.0, map_height + gap), page);
+    draw_figures(&mut canvas, area.inset(0.0, 0.0, 0.0, map_height + gap), page);
     if let Some(map) = map {
         let below = area.inset(0.0, area.height - map_height, 0.0, 0.0);
         draw_turn_map(&mut canvas, below, &map, &page.theme, scale);
+        draw_letters(&mut canvas, &below, page);
     }
     canvas.image
 }
 
+/// What the letters stand for, at the right end of the line of the colour key; as many as there is room for.
+fn draw_letters(canvas: &mut Canvas, map: &Area, page: &ClipPage<'_>) {
+    let scale = page.scale;
+    let style = TextStyle::words(SMALL * scale, page.theme.text_faint);
+    let (box_size, y) = (13.0 * scale, map.bottom() - KEY_MIDDLE * scale);
+    let mut right = map.right() - 8.0 * scale;
+    let kinds =
+        SnagKind::ALL.into_iter().rev().filter(|kind| page.snags.iter().any(|snag| snag.kind == *kind));
+    for kind in kinds {
+        let left = right - text_width(kind.name(), &style) - 5.0 * scale - box_size;
+        if left < map.left + map.width * 0.5 {
+            break;
+        }
+        draw_letter(canvas, kind.letter(), Vec2::new(left + box_size / 2.0, y), box_size, page.theme.snag);
+        let name_at = Vec2::new(left + box_size + 5.0 * scale, y);
+        draw_text_centered(&mut canvas.image, kind.name(), name_at, &style);
+        right = left - 14.0 * scale;
+    }
+}
+
 fn page_map(page: &ClipPage<'_>) -> TurnMap {
-    let rows = turn_rate_rows(page.clip, page.snags);
+    let clip = page.before.unwrap_or(page.clip);
+    let rows = turn_rate_rows(clip, page.snags);
     let scale = full_scale(rows.iter().map(|row| &row.values[..]));
     TurnMap {
-        title: "Turn rate of each joint".to_owned(),
+        title: match page.before {
+            Some(_) => "Turn rate of each joint in the source, and its snags".to_owned(),
+            None => "Turn rate of each joint".to_owned(),
+        },
         rows,
-        time_secs: [0.0, page.clip.grid.time(page.clip.grid.count().saturating_sub(1))],
+        time_secs: [0.0, clip.grid.time(clip.grid.count().saturating_sub(1))],
         full_scale: scale,
         unit: "°/s".to_owned(),
         playhead_secs: None,
@@ -144,23 +170,26 @@ fn page_map(page: &ClipPage<'_>) -> TurnMap {
     }
 }
 
-/// The figures side by side, each with its time, all in one row of equal pictures.
-fn draw_figures_row(canvas: &mut Canvas, area: Area, page: &ClipPage<'_>) {
+/// The figures in equal pictures, each with its time, in as many rows as make them largest.
+fn draw_figures(canvas: &mut Canvas, area: Area, page: &ClipPage<'_>) {
     let count = page.times_secs.len();
     if count == 0 {
         return;
     }
     let scale = page.scale;
-    let gap = 8.0 * scale;
-    let caption_height = 20.0 * scale;
-    let width = ((area.width - gap * (count - 1) as f32) / count as f32).floor().max(1.0);
-    let height = (area.height - caption_height).floor().max(1.0);
+    let layout = TileLayout { gap: 8.0 * scale, caption: 20.0 * scale };
+    let (columns, [width, height]) = layout.fit(count, [area.width, area.height]);
+    let girths = [page.clip, page.before.unwrap_or(page.clip)].map(|clip| Girth::of_skeleton(&clip.skeleton));
+    let pose = |clip: &Clip, girth: Girth, secs: f64, style: FigureStyle| {
+        let limbs = limbs_of_skeleton(&clip.skeleton, &clip.world_at(secs));
+        Figure { girth, ..Figure::new(limbs, style) }
+    };
     let moments: Vec<Moment> = page
         .times_secs
         .iter()
         .map(|&secs| {
-            let after = figure_of_clip(page.clip, secs, FigureStyle::After);
-            let before = page.before.map(|clip| figure_of_clip(clip, secs, FigureStyle::Before));
+            let after = pose(page.clip, girths[0], secs, FigureStyle::After);
+            let before = page.before.map(|clip| pose(clip, girths[1], secs, FigureStyle::Before));
             let caption = format!("{secs:.2} s, frame {}", page.clip.grid.frame(secs));
             Moment { caption, figures: std::iter::once(after).chain(before).collect() }
         })
@@ -171,15 +200,44 @@ fn draw_figures_row(canvas: &mut Canvas, area: Area, page: &ClipPage<'_>) {
         scale,
         camera: page.camera,
         theme: page.theme,
-        heading: DVec3::Z,
+        heading: DVec3::ZERO,
         tip_paths: Vec::new(),
     };
     let words = TextStyle::words(13.0 * scale, page.theme.text);
     for (i, tile) in contact_strip(&moments, &style).iter().enumerate() {
-        let left = area.left + i as f32 * (width + gap);
+        let left = area.left + (i % columns) as f32 * (width + layout.gap);
+        let top = area.top + (i / columns) as f32 * (height + layout.caption + layout.gap);
         let caption = elide(&tile.caption, &words, width);
-        draw_text(&mut canvas.image, &caption, Vec2::new(left, area.top), &words);
-        canvas.image.blit(&tile.image, left as i32, (area.top + caption_height) as i32);
+        draw_text(&mut canvas.image, &caption, Vec2::new(left, top), &words);
+        canvas.image.blit(&tile.image, left as i32, (top + layout.caption) as i32);
+    }
+}
+
+/// How pictures share an area, pixels.
+#[derive(Clone, Copy, Debug)]
+struct TileLayout {
+    /// Between neighbours.
+    gap: f32,
+    /// Above each, for its words.
+    caption: f32,
+}
+
+impl TileLayout {
+    /// Columns and tile size with the largest figures for so many tiles: for each number of columns a tile is what is
+    /// left, and a figure that stands upright needs the smaller of its height and five thirds of its width.
+    fn fit(self, count: usize, [width, height]: [f32; 2]) -> (usize, [f32; 2]) {
+        let tile = |columns: usize| {
+            let rows = count.div_ceil(columns);
+            let each = |room: f32, count: usize| (room - self.gap * (count - 1) as f32) / count as f32;
+            [each(width, columns).floor().max(1.0), (each(height, rows) - self.caption).floor().max(1.0)]
+        };
+        let worth = |columns: usize| {
+            let [width, height] = tile(columns);
+            (width * 5.0 / 3.0).min(height)
+        };
+        // Of equal ones the fewest columns, whose tiles are the widest.
+        let columns = (1..=count.max(1)).rev().max_by(|&a, &b| worth(a).total_cmp(&worth(b))).unwrap_or(1);
+        (columns, tile(columns))
     }
 }
 
@@ -233,6 +291,24 @@ mod tests {
         assert!((found[0] - 8.0 / 30.0).abs() < 1e-9 || (found[0] - 7.0 / 30.0).abs() < 1e-9, "{found:?}");
         assert!((0.7..0.8).contains(&found[1]), "{found:?}");
         assert!(spread_times(&clip(), 0).is_empty());
+    }
+
+    #[test]
+    fn tiles_share_the_area_without_leaving_it() {
+        let layout = TileLayout { gap: 8.0, caption: 20.0 };
+        for (count, size, expected) in [
+            (1, [800.0, 600.0], 1),
+            (8, [1600.0, 450.0], 8),
+            (3, [1600.0, 500.0], 3),
+            (4, [400.0, 1200.0], 2),
+            (9, [900.0, 900.0], 5),
+        ] {
+            let (columns, [width, height]) = layout.fit(count, size);
+            assert_eq!(columns, expected, "{count} on {size:?}");
+            let rows = count.div_ceil(columns) as f32;
+            assert!(columns as f32 * (width + 8.0) - 8.0 <= size[0]);
+            assert!(rows * (height + 28.0) - 8.0 <= size[1]);
+        }
     }
 
     #[test]

@@ -100,7 +100,7 @@ fn cell_span(at: usize, pixels: usize, cells: usize) -> (usize, usize) {
 /// The height that shows every row with a legible name, pixels.
 pub fn turn_map_height(map: &TurnMap, scale: f32) -> f32 {
     let title = if map.title.is_empty() { 0.0 } else { 22.0 };
-    (title + map.rows.len() as f32 * 16.0 + 22.0 + 30.0) * scale
+    (title + map.rows.len() as f32 * 16.0 + BELOW) * scale
 }
 
 /// Draws a turn map with names, times, snags and its colour key into an area. `scale` is pixels per point.
@@ -115,7 +115,7 @@ pub fn draw_turn_map(canvas: &mut Canvas, area: Area, map: &TurnMap, theme: &The
     let name_style = TextStyle::words(SMALL * scale, theme.text);
     let widest = map.rows.iter().map(|row| text_width(&row.name, &name_style)).fold(0.0, f32::max);
     let names_width = widest.min(area.width * 0.25) + 14.0 * scale;
-    let inner = inner.inset(names_width, 0.0, 8.0 * scale, 52.0 * scale);
+    let inner = inner.inset(names_width, 0.0, 8.0 * scale, BELOW * scale);
     let inner = Area {
         left: inner.left.round(),
         top: inner.top.round(),
@@ -204,15 +204,22 @@ fn draw_row_marks(canvas: &mut Canvas, strip: &Area, row: &MapRow, time: &Scale,
     }
 }
 
+/// Room below the heat for times and the colour key, points.
+const BELOW: f32 = 52.0;
+/// The height of the colour key's middle above the lower border of the whole map, points.
+pub(super) const KEY_MIDDLE: f32 = 17.5;
+/// The colour key's own height, points.
+const KEY_HEIGHT: f32 = 9.0;
+
 /// The colour key below the times: the heat from 0 to full scale, with numbers.
 fn draw_key(canvas: &mut Canvas, area: &Area, map: &TurnMap, theme: &Theme, scale: f32) {
     let style = TextStyle::words(SMALL * scale, theme.text_faint);
     let width = (180.0 * scale).min(area.width * 0.5).round();
     let key = Area {
         left: area.left,
-        top: (area.bottom() + 30.0 * scale).round(),
+        top: (area.bottom() + (BELOW - KEY_MIDDLE - KEY_HEIGHT / 2.0) * scale).round(),
         width,
-        height: (9.0 * scale).round(),
+        height: (KEY_HEIGHT * scale).round(),
     };
     for x in 0..width as usize {
         let color = cividis(((x as f32 + 0.5) / width).sqrt());

@@ -344,7 +344,7 @@ fn a_contact_strip_sets_times_side_by_side() {
 fn swinging_clip(fault: bool) -> Clip {
     let skeleton = Arc::new(biped(1.8, 0.2));
     let grid = FrameGrid::even(30.0, 2.0);
-    let mut joints = vec![Arc::new(JointTracks::default()); skeleton.len()];
+    let mut joints = vec![JointTracks::default(); skeleton.len()];
     let [shoulder, elbow] = [10, 11];
     for (joint, reach_rad) in [(shoulder, 0.9), (elbow, 0.5)] {
         let key = |frame: usize| {
@@ -356,8 +356,9 @@ fn swinging_clip(fault: bool) -> Clip {
         };
         let keys: Vec<Rotor> = (0..grid.count()).map(key).collect();
         let track = RotationTrack::from_rotors(grid.times.clone(), keys);
-        joints[joint] = Arc::new(JointTracks { rotation: Some(track), ..JointTracks::default() });
+        joints[joint].rotation = Some(track);
     }
+    let joints = joints.into_iter().map(Arc::new).collect();
     Clip { name: "swing".to_owned(), skeleton, joints, grid, duration_secs: 2.0 }
 }
 
