@@ -182,7 +182,7 @@ fn snags(page: &mut String, clip: &ClipProof) {
             escape(&snag.joint),
             range(snag.frames[0].to_string(), snag.frames[1].to_string()),
             range(plain(snag.secs[0], 2), plain(snag.secs[1], 2)),
-            degrees(snag.size_rad),
+            format_args!("{:.1}°", snag.size_rad.to_degrees()),
             escape(&snag.text),
         );
     };
@@ -335,10 +335,11 @@ fn whole(value: f64) -> String {
 
 /// Three significant digits.
 fn significant(value: f64) -> String {
-    if value == 0.0 {
+    // Below this is what f64 rounds away.
+    if value < 1e-12 {
         return "0".to_owned();
     }
-    if !(1e-3..1e7).contains(&value) {
+    if !(1e-3..1e12).contains(&value) {
         return format!("{value:.2e}");
     }
     if value >= 100.0 {

@@ -91,7 +91,18 @@ fn deckhand_bvh(clean: &Motion, faulty: bool) -> Vec<u8> {
         motion.poses[frame].turns[head] = motion.poses[frame].turns[head] * body::y(degrees);
     }
 
-    let mut angles = write::angles(&motion);
+    let mut angles = write::angles(clean);
+    for (bone, triples) in angles.iter_mut().enumerate() {
+        let mut last = [0.0; 3];
+        for (frame, triple) in triples.iter_mut().enumerate() {
+            let rotor = motion.poses[frame].turns[bone];
+            if rotor != clean.poses[frame].turns[bone] {
+                let own = EulerOrder::ZXY.from_rotor(rotor.normalize(), last[2]);
+                *triple = EulerOrder::ZXY.nearest_equal(own, last).map(f64::to_degrees);
+            }
+            last = triple.map(f64::to_radians);
+        }
+    }
     for triple in &mut angles[motion.bone("Hips")] {
         triple[2] = within_half_turn(triple[2]);
     }
