@@ -343,7 +343,8 @@ fn significant(value: f64) -> String {
         return format!("{value:.2e}");
     }
     if value >= 100.0 {
-        return whole(value);
+        let unit = 10_f64.powf(value.log10().floor() - 2.0);
+        return whole((value / unit).round() * unit);
     }
     let decimals = (2 - value.log10().floor() as i32).max(0) as usize;
     plain(value, decimals)
@@ -382,7 +383,7 @@ mod tests {
         assert_eq!([0.0, 0.0001, 0.25, 179.96].map(small), ["0", "< 0.001", "0.250", "180.0"]);
         assert_eq!(
             [0.0, 0.01234, 7.5, 48.06, 12_345.0].map(significant),
-            ["0", "0.0123", "7.5", "48.1", "12\u{202f}345"]
+            ["0", "0.0123", "7.5", "48.1", "12\u{202f}300"]
         );
         assert_eq!(plain(60.0, 3), "60");
     }

@@ -13,11 +13,15 @@ use std::path::{Path, PathBuf};
 
 use turnwright::exchange;
 use turnwright::exchange::OpenOptions;
+use turnwright::exchange::Source;
 use turnwright::exchange::disk;
 use turnwright::exchange::ron;
+use turnwright::mend::{self, SurveyOptions};
+use turnwright::proof;
 use turnwright::rotor::{EulerOrder, Rotor};
 use turnwright::scene::{ClipWork, Document, SourceRef};
 use turnwright::snag::SnagKind;
+use turnwright::snag::Unwatched;
 
 use body::Motion;
 use write::{Channel, Columns};
@@ -260,5 +264,44 @@ fn demo_scenes_are_current() {
                 path.display()
             );
         }
+    }
+}
+
+fn open(path: &str, name: &str) -> Source {
+    exchange::open(&folder(path).join(name), &OpenOptions::default()).expect("a demo clip opens")
+}
+
+/// Every planted fault is found at its frames, wraps besides, and nothing else.
+#[test]
+fn planted_faults_are_found_and_no_others() {
+    for (name, planted, wrapped) in
+        [("deckhand.bvh", DECKHAND, "Hips"), ("heron.glb", HERON, ""), ("crane.csv", CRANE, "Slewing")]
+    {
+        let source = open("demo-scenes", name);
+        let clip = &source.clips[0];
+        let survey = mend::survey(clip, &SurveyOptions::default(), &Unwatched).unwrap();
+        let found: Vec<(SnagKind, &str, usize, usize)> = survey
+            .snags
+            .iter()
+            .map(|snag| (snag.kind, clip.skeleton.label(snag.joint), snag.first_frame, snag.last_frame))
+            .collect();
+        for fault in planted {
+            assert!(found.contains(fault), "{name}: {fault:?} is not among {found:?}");
+        }
+        for snag in &found {
+            let is_wrap = snag.0 == SnagKind::Wrap && snag.1 == wrapped;
+            assert!(is_wrap || planted.contains(snag), "{name}: {snag:?} was not planted");
+        }
+        assert_eq!(found.iter().any(|snag| snag.0 == SnagKind::Wrap), !wrapped.is_empty(), "{name}");
+
+        let clean = open("tests/data/demo_clean", name);
+        let none = mend::survey(&clean.clips[0], &SurveyOptions::default(), &Unwatched).unwrap();
+        assert!(none.snags.is_empty(), "{name}: {:?}", none.snags);
+
+        // What was drawn anew is near the truth; all else is the truth.
+        let apart = proof::measure(&clean.clips[0], &survey.mended, &Unwatched).unwrap();
+        let most = apart.most_changed().unwrap();
+        let degrees = most.change.value.to_degrees();
+        assert!(degrees < 0.5, "{name}: {} is {degrees} degrees off its clean original", most.label);
     }
 }

@@ -4,6 +4,7 @@
 //! |---|---|
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
+//! | `commands` | the real program: what it prints, how it ends, what it writes |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
 //! | `exchange` | files as a whole: every outside file opens, comes back, and goes into every other format |
 //! | `gltf_broken` | glTF and GLB files, damaged: every error with place, expected and found; random damage without a panic |
@@ -16,6 +17,7 @@
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
 //! | `gui_start` | the real program where no window can open |
+//! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
 //! | `raster` | small pictures of one subject each |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
@@ -25,6 +27,7 @@
 //! | `strategies` | the random values; no tests of its own |
 //! | `support` | where the outside files are, and comparing with a tolerance; tested by itself only |
 mod bvh;
+mod commands;
 mod csv;
 mod demo;
 mod exchange;
@@ -42,6 +45,7 @@ mod gui_screen;
 mod gui_start;
 mod layers;
 mod planter;
+mod proof;
 mod raster;
 mod rotor_checks;
 mod rotor_methods;

@@ -48,9 +48,11 @@ pub(crate) fn run(args: &MendArgs, output: &mut Output) -> Result<u8, CliError> 
         guard.check(target)?;
     }
     for (input, target) in inputs.iter().zip(&targets) {
-        let results = mend_input(input, &choice, args.json, output)?;
-        let choice = input.is_named.then(|| input.first());
-        let written = exchange::write(&input.source, &results, choice, target, &guard)?;
+        let mended = mend_input(input, &choice)?;
+        let of_many = input.is_named.then(|| input.first());
+        let written = exchange::write(&input.source, &mended.results, of_many, target, &guard)?;
+        // Told when it is true.
+        mended.report(input, args.json, output)?;
         output.notes(target, &written.notes);
         output.say(&format!("wrote {}", target.display()));
         if let (Some(sheet), Some(format)) = (&args.proof, sheet_format) {
@@ -84,33 +86,44 @@ impl Choice {
     }
 }
 
-/// A result for each clip of the source: those meant mended, the others as they are. Reports each on the way.
-fn mend_input(
-    input: &Input,
-    choice: &Choice,
-    is_json: bool,
-    output: &mut Output,
-) -> Result<Vec<Arc<Clip>>, CliError> {
-    let mut results = input.results.clone();
-    for &index in &input.chosen {
-        let (mended, snags, mends) = mend_clip(&input.source.path, &input.results[index], choice)?;
-        let label = input.source.clip_label(index);
-        let report = ClipReport {
-            path: &input.source.path,
-            label: &label,
-            index,
-            clip: &input.results[index],
-            snags: &snags,
-            mends: Some(&mends),
-        };
-        if is_json {
-            output.line(json::clip(&report))?;
-        } else {
-            text::clip(output, &report)?;
+/// The mended clips of an input.
+struct Mended {
+    /// One for each clip of the source: those meant mended, the others as they are.
+    results: Vec<Arc<Clip>>,
+    /// Index, snags, and what was done about them, of each clip that was meant.
+    told: Vec<(usize, Vec<Snag>, MendReport)>,
+}
+
+impl Mended {
+    fn report(&self, input: &Input, is_json: bool, output: &mut Output) -> Result<(), CliError> {
+        for (index, snags, mends) in &self.told {
+            let label = input.source.clip_label(*index);
+            let report = ClipReport {
+                path: &input.source.path,
+                label: &label,
+                index: *index,
+                clip: &input.results[*index],
+                snags,
+                mends: Some(mends),
+            };
+            if is_json {
+                output.line(json::clip(&report))?;
+            } else {
+                text::clip(output, &report)?;
+            }
         }
-        results[index] = mended;
+        Ok(())
     }
-    Ok(results)
+}
+
+fn mend_input(input: &Input, choice: &Choice) -> Result<Mended, CliError> {
+    let mut mended = Mended { results: input.results.clone(), told: Vec::new() };
+    for &index in &input.chosen {
+        let (result, snags, mends) = mend_clip(&input.source.path, &input.results[index], choice)?;
+        mended.results[index] = result;
+        mended.told.push((index, snags, mends));
+    }
+    Ok(mended)
 }
 
 /// The mended clip, its snags, and what was done about them.

@@ -108,7 +108,7 @@ fn pose(t: f64, travelled: DVec3) -> Pose {
     {
         // On the quay until it leaves; then behind the body, trailing.
         let stand = DVec3::new(side * 0.055, 0.0, 0.03 + 0.025 * side);
-        let behind = root + travelled + DVec3::new(side * 0.04, -0.09 + 0.012 * wave(beat + 0.6), -0.46);
+        let behind = root + travelled + DVec3::new(side * 0.04, -0.355 + 0.012 * wave(beat + 0.6), -0.36);
         let target = stand + (behind - stand) * trail;
         bird.bend_leg(leg, tarsus, toes, target, DVec3::new(side * 0.1, 0.35 * trail, -1.0));
         bird.turn_to(toes, y(side * 8.0) * x(mix(0.0, 75.0, trail)));
