@@ -542,3 +542,107 @@ fn mends_of_numbers_change_no_pose_and_every_mend_keeps_the_rest() {
         }
     }
 }
+
+/// `keys` with half a turn about `axis` in the runs, as text over all frames.
+fn flipped(keys: &[Rotor], runs: &[(usize, usize)], axis: Axis) -> Vec<Rotor> {
+    let half = axis.rotor(std::f64::consts::PI);
+    let off = |key: usize| runs.iter().any(|run| (run.0..=run.1).contains(&key));
+    keys.iter().enumerate().map(|(key, own)| if off(key) { *own * half } else { *own }).collect()
+}
+
+#[track_caller]
+fn half_turns_are(survey: &Survey, joint: usize, runs: &[(usize, usize)]) {
+    let own: Vec<(usize, usize)> = survey
+        .snags
+        .iter()
+        .filter(|snag| snag.joint == joint && snag.kind == SnagKind::HalfTurn)
+        .map(|snag| (snag.first_frame, snag.last_frame))
+        .collect();
+    assert_eq!(own, runs);
+}
+
+#[track_caller]
+fn worst_error_deg(mended: &Clip, truth: &[Rotor], joint: usize) -> f64 {
+    let track = mended.rotation(joint).unwrap();
+    let errors =
+        track.keys.iter().zip(truth).map(|(own, truth)| own.normalize().turn_to(*truth).to_degrees());
+    errors.fold(0.0, f64::max)
+}
+
+#[test]
+fn half_turns_are_taken_out_wherever_they_lie() {
+    let truth = rotors(240);
+    let cases: [&[(usize, usize)]; 5] =
+        [&[(60, 90)], &[(200, 239)], &[(0, 20)], &[(50, 59), (80, 110), (112, 130)], &[(77, 77)]];
+    for runs in cases {
+        for axis in [Axis::X, Axis::Y, Axis::Z] {
+            let broken = clip_of(vec![RotationTrack::from_rotors(even(240), flipped(&truth, runs, axis))]);
+            let survey = all(&broken);
+            half_turns_are(&survey, 0, runs);
+            let error = worst_error_deg(&survey.mended, &truth, 0);
+            assert!(error < 0.3, "{runs:?} about {axis:?}: {error}°");
+        }
+    }
+}
+
+#[test]
+fn a_child_that_turns_back_against_its_flipped_parent_is_mended_with_it() {
+    let truth = rotors(240);
+    let half = Axis::Y.rotor(std::f64::consts::PI);
+    let parent = flipped(&truth, &[(60, 150)], Axis::Y);
+    let child: Vec<Rotor> = truth
+        .iter()
+        .enumerate()
+        .map(|(key, own)| if (60..=150).contains(&key) { half.reverse() * *own } else { *own })
+        .collect();
+    let broken = clip_of(vec![
+        RotationTrack::from_rotors(even(240), parent),
+        RotationTrack::from_rotors(even(240), child),
+    ]);
+    let survey = all(&broken);
+    for joint in 0..2 {
+        half_turns_are(&survey, joint, &[(60, 150)]);
+        let error = worst_error_deg(&survey.mended, &truth, joint);
+        assert!(error < 0.3, "{error}°");
+    }
+}
+
+#[test]
+fn a_calibration_pose_at_the_start_is_no_fault() {
+    let mut keys = rotors(240);
+    keys[0] = keys[0] * Axis::X.rotor(2.9);
+    let clip = clip_of(vec![RotationTrack::from_rotors(even(240), keys)]);
+    assert_eq!(all(&clip).snags, []);
+}
+
+#[test]
+fn a_spike_is_found_at_every_rate_and_with_uneven_keys() {
+    for rate in [24.0, 30.0, 60.0, 120.0, 240.0] {
+        for uneven in [0.0, 0.3] {
+            let secs: Vec<f64> =
+                (0..200).map(|i| (f64::from(i) + uneven * f64::from(i * 7 % 5) / 5.0) / rate).collect();
+            let truth: Vec<Rotor> = secs
+                .iter()
+                .map(|t| Axis::Z.rotor((1.5 * t).sin()) * Axis::X.rotor(0.7 * (2.2 * t).cos()))
+                .collect();
+            let mut keys = truth.clone();
+            for key in [80, 81] {
+                keys[key] = keys[key] * Axis::Y.rotor(0.6);
+            }
+            let track = RotationTrack::from_rotors(Times::Listed(secs.into()), keys);
+            let mut broken = clip_of(vec![track]);
+            broken.grid.rate = rate;
+            let survey = all(&broken);
+            only(&survey, SnagKind::Spike, (80, 81));
+            let error = worst_error_deg(&survey.mended, &truth, 0);
+            assert!(error < 0.3, "{rate} a second, uneven {uneven}: {error}°");
+        }
+    }
+}
+
+#[test]
+fn a_held_track_may_jump() {
+    let mut track = RotationTrack::from_rotors(even(60), flipped(&rotors(60), &[(20, 30)], Axis::Y));
+    track.paths = Paths::Every(PathKind::Hold);
+    assert_eq!(all(&clip_of(vec![track])).snags, []);
+}
