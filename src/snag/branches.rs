@@ -1,7 +1,6 @@
 //! Which of its equal triples each key of a file's angles stores, against the row of triples that changes least.
 
 use crate::clip::FileAngles;
-use crate::rotor::Rotor;
 
 use super::scan::Scan;
 
@@ -32,7 +31,7 @@ pub(super) fn follow(scan: &Scan<'_>, angles: &FileAngles) -> Branches {
     // For each key and branch, whether the best way into it comes from the other branch.
     let mut from_other: Vec<[bool; 2]> = Vec::with_capacity(count);
     let mut before: Option<[[f64; 3]; 2]> = None;
-    let mut pose = None;
+    let mut last_key = 0;
     for (key, triple) in angles.degrees.iter().enumerate() {
         if !triple.iter().all(|angle| angle.is_finite()) {
             from_other.push([false; 2]);
@@ -40,17 +39,22 @@ pub(super) fn follow(scan: &Scan<'_>, angles: &FileAngles) -> Branches {
         }
         let own = [*triple, mirrored(angles, *triple)];
         let Some(near) = before.replace(own) else {
-            pose = scan.unit(key);
+            last_key = key;
             from_other.push([false; 2]);
             continue;
         };
         let change = |a: usize, b: usize| (0..3).map(|i| short(own[b][i] - near[a][i]).powi(2)).sum::<f64>();
         // Both triples mirrored change by the same, so two of the four sums serve.
-        let near_pose = std::mem::replace(&mut pose, scan.unit(key));
-        let turn = near_pose.zip(pose).map_or(0.0, |(a, b): (Rotor, Rotor)| a.turn_to(b));
-        let can_switch = has_mirror && turn <= FOLLOWED_RAD;
-        let (stay, switch) =
-            (change(0, 0), if can_switch { change(1, 0) + SWITCH_COST } else { f64::INFINITY });
+        let near_key = std::mem::replace(&mut last_key, key);
+        let stay = change(0, 0);
+        let mut switch = if has_mirror { change(1, 0) + SWITCH_COST } else { f64::INFINITY };
+        // The turn is dear to compute and seldom asked for.
+        if (0..2).any(|branch| costs[1 - branch] + switch < costs[branch] + stay) {
+            let turn = scan.unit(near_key).zip(scan.unit(key)).map_or(0.0, |(a, b)| a.turn_to(b));
+            if turn > FOLLOWED_RAD {
+                switch = f64::INFINITY;
+            }
+        }
         let mut taken = [false; 2];
         let mut next = [0.0; 2];
         for branch in 0..2 {

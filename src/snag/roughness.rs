@@ -34,8 +34,6 @@ pub(super) struct Usual {
     pub(super) median: f64,
     /// Its robust spread.
     pub(super) spread: f64,
-    /// Median step from key to key.
-    pub(super) step: f64,
 }
 
 impl Roughness {
@@ -69,7 +67,7 @@ impl Roughness {
             .step_by(block)
             .map(|start| {
                 let middle = start + block / 2;
-                usual(&poses, &residual, middle.saturating_sub(reach)..(middle + reach + 1).min(count), 0..0)
+                usual(&residual, middle.saturating_sub(reach)..(middle + reach + 1).min(count), 0..0)
             })
             .collect();
         Some(Self { poses, secs, residual, usual, block, reach })
@@ -82,7 +80,17 @@ impl Roughness {
     /// What is usual around a run of keys, those next to its ends left out with it.
     pub(super) fn usual_without(&self, first: usize, last: usize) -> Usual {
         let near = first.saturating_sub(self.reach)..(last + self.reach + 1).min(self.len());
-        usual(&self.poses, &self.residual, near, first.saturating_sub(1)..last + 2)
+        usual(&self.residual, near, first.saturating_sub(1)..last + 2)
+    }
+
+    /// The median step from key to key around a run, in radians.
+    pub(super) fn usual_step_without(&self, first: usize, last: usize) -> f64 {
+        let near = first.saturating_sub(self.reach).max(1)..(last + self.reach + 1).min(self.len());
+        let mut steps: Vec<f64> = near
+            .filter(|key| !(first.saturating_sub(1)..last + 3).contains(key))
+            .map(|key| angle_of_dot(self.poses[key - 1].dot(self.poses[key])))
+            .collect();
+        if steps.is_empty() { 0.0 } else { take(&mut steps, 0.5) }
     }
 
     /// What is usual around a key.
@@ -118,11 +126,11 @@ pub(super) fn angle_of_dot(dot: f64) -> f64 {
     2.0 * dot.abs().min(1.0).acos()
 }
 
-fn usual(poses: &[Rotor], residual: &[f64], near: Range<usize>, without: Range<usize>) -> Usual {
+fn usual(residual: &[f64], near: Range<usize>, without: Range<usize>) -> Usual {
     // The ends have no residual of their own.
     let near = near.start.max(1)..near.end.min(residual.len() - 1);
     let keys = near.filter(|key| !without.contains(key));
-    let mut own: Vec<f64> = keys.clone().map(|key| residual[key]).collect();
+    let mut own: Vec<f64> = keys.map(|key| residual[key]).collect();
     if own.is_empty() {
         return Usual::default();
     }
@@ -131,12 +139,7 @@ fn usual(poses: &[Rotor], residual: &[f64], near: Range<usize>, without: Range<u
         *value = (*value - median).abs();
     }
     let spread = SIGMA_PER_MAD * take(&mut own, 0.5);
-    let mut steps: Vec<f64> = keys
-        .filter(|key| !without.contains(&(key + 1)))
-        .map(|key| angle_of_dot(poses[key - 1].dot(poses[key])))
-        .collect();
-    let step = if steps.is_empty() { 0.0 } else { take(&mut steps, 0.5) };
-    Usual { median, spread, step }
+    Usual { median, spread }
 }
 
 /// The value at a share of the sorted list.

@@ -225,7 +225,11 @@ fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Op
         && gain >= least_gain
         && score * gain >= least_product
         && run.across
-            <= (STEP_SIZES * run.size).max(USUAL_STEPS * usual.step * (run.last + 2 - run.first) as f64);
+            <= (STEP_SIZES * run.size).max(
+                USUAL_STEPS
+                    * rough.usual_step_without(run.first, run.last)
+                    * (run.last + 2 - run.first) as f64,
+            );
     is_spike.then(|| 1.0 - 0.5 * (LEAST_PRODUCT / (score * gain)).sqrt())
 }
 
