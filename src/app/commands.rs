@@ -4,6 +4,7 @@ use std::path::PathBuf;
 
 use egui::{Key, KeyboardShortcut, Modifiers};
 
+use crate::exchange::csv::{NamedColumns, TimeUnit};
 use crate::raster::Camera;
 use crate::scene::{Edit, PassId};
 
@@ -86,13 +87,13 @@ pub enum Menu {
     Edit,
     View,
     Snags,
-    Play,
+    Time,
     Help,
 }
 
 impl Menu {
     /// All menus in order.
-    pub const ALL: [Self; 6] = [Self::File, Self::Edit, Self::View, Self::Snags, Self::Play, Self::Help];
+    pub const ALL: [Self; 6] = [Self::File, Self::Edit, Self::View, Self::Snags, Self::Time, Self::Help];
 
     /// Its title.
     pub const fn title(self) -> &'static str {
@@ -101,7 +102,7 @@ impl Menu {
             Self::Edit => "Edit",
             Self::View => "View",
             Self::Snags => "Snags",
-            Self::Play => "Play",
+            Self::Time => "Time",
             Self::Help => "Help",
         }
     }
@@ -182,24 +183,24 @@ pub struct Entry {
     pub is_on: Option<fn(&Situation) -> bool>,
 }
 
-const fn plain(key: Key) -> Option<KeyboardShortcut> {
-    Some(KeyboardShortcut::new(Modifiers::NONE, key))
+const fn plain(key: Key) -> KeyboardShortcut {
+    KeyboardShortcut::new(Modifiers::NONE, key)
 }
 
-const fn ctrl(key: Key) -> Option<KeyboardShortcut> {
-    Some(KeyboardShortcut::new(Modifiers::COMMAND, key))
+const fn ctrl(key: Key) -> KeyboardShortcut {
+    KeyboardShortcut::new(Modifiers::COMMAND, key)
 }
 
-const fn ctrl_shift(key: Key) -> Option<KeyboardShortcut> {
-    Some(KeyboardShortcut::new(Modifiers::COMMAND.plus(Modifiers::SHIFT), key))
+const fn ctrl_shift(key: Key) -> KeyboardShortcut {
+    KeyboardShortcut::new(Modifiers::COMMAND.plus(Modifiers::SHIFT), key)
 }
 
-const fn shift(key: Key) -> Option<KeyboardShortcut> {
-    Some(KeyboardShortcut::new(Modifiers::SHIFT, key))
+const fn shift(key: Key) -> KeyboardShortcut {
+    KeyboardShortcut::new(Modifiers::SHIFT, key)
 }
 
-const fn alt(key: Key) -> Option<KeyboardShortcut> {
-    Some(KeyboardShortcut::new(Modifiers::ALT, key))
+const fn alt(key: Key) -> KeyboardShortcut {
+    KeyboardShortcut::new(Modifiers::ALT, key)
 }
 
 const fn entry(
@@ -233,24 +234,24 @@ const SNAGS: fn(&Situation) -> bool = |now| now.snags > 0;
 /// The table.
 pub const TABLE: &[Entry] = &{
     use Action as A;
-    use Menu::{Edit as E, File as F, Help as H, Play as P, Snags as S, View as V};
+    use Menu::{Edit as E, File as F, Help as H, Snags as S, Time as P, View as V};
     [
         entry(
             F,
             A::Open,
             "Open…",
             "Choose clips (.gltf .glb .bvh .csv) or a scene (.ron)",
-            ctrl(Key::O),
+            Some(ctrl(Key::O)),
             ALWAYS,
         ),
-        entry(F, A::OpenPath, "Open path…", "Type the path of a clip or scene", ctrl_shift(Key::O), ALWAYS),
+        entry(F, A::OpenPath, "Open path…", "Type the path of a clip or scene", Some(ctrl_shift(Key::O)), ALWAYS),
         entry(F, A::OpenDemo, "Open the demo", "The night ferry: a clip with planted snags", None, ALWAYS),
         entry(
             F,
             A::ChooseClip,
             "Choose clip…",
             "Work on another clip of the open files",
-            ctrl(Key::P),
+            Some(ctrl(Key::P)),
             |now| now.has_several_clips,
         ),
         entry(
@@ -258,17 +259,17 @@ pub const TABLE: &[Entry] = &{
             A::Save,
             "Save scene",
             "Write the passes and decisions to the scene file",
-            ctrl(Key::S),
+            Some(ctrl(Key::S)),
             DOCUMENT,
         )
         .group(),
-        entry(F, A::SaveAs, "Save scene as…", "Write a new scene file", ctrl_shift(Key::S), DOCUMENT),
+        entry(F, A::SaveAs, "Save scene as…", "Write a new scene file", Some(ctrl_shift(Key::S)), DOCUMENT),
         entry(
             F,
             A::Export,
             "Export clip…",
             "Write the corrected curves, with a summary of what changed",
-            ctrl(Key::E),
+            Some(ctrl(Key::E)),
             CLIP,
         ),
         entry(
@@ -279,18 +280,18 @@ pub const TABLE: &[Entry] = &{
             None,
             |now| now.has_trouble,
         ),
-        entry(F, A::Quit, "Quit", "Close the window", ctrl(Key::Q), ALWAYS).group(),
-        entry(E, A::Undo, "Undo", "Take back the last change", ctrl(Key::Z), |now| now.undo.is_some()),
-        entry(E, A::Redo, "Redo", "Bring back what was undone", ctrl_shift(Key::Z), |now| now.redo.is_some()),
-        entry(E, A::History, "History…", "All changes since the file was opened", ctrl(Key::H), DOCUMENT)
+        entry(F, A::Quit, "Quit", "Close the window", Some(ctrl(Key::Q)), ALWAYS).group(),
+        entry(E, A::Undo, "Undo", "Take back the last change", Some(ctrl(Key::Z)), |now| now.undo.is_some()),
+        entry(E, A::Redo, "Redo", "Bring back what was undone", Some(ctrl_shift(Key::Z)), |now| now.redo.is_some()),
+        entry(E, A::History, "History…", "All changes since the file was opened", Some(ctrl(Key::H)), DOCUMENT)
             .group(),
-        entry(V, A::Fit, "Fit figure", "Bring the whole figure into view", ctrl(Key::Num7), CLIP),
+        entry(V, A::Fit, "Fit figure", "Bring the whole figure into view", Some(ctrl(Key::Num7)), CLIP),
         entry(
             V,
             A::Follow,
             "Follow figure",
             "The view goes along when the figure walks",
-            ctrl(Key::Num8),
+            Some(ctrl(Key::Num8)),
             CLIP,
         )
         .switch(|now| now.follows),
@@ -299,35 +300,35 @@ pub const TABLE: &[Entry] = &{
             A::Parallel,
             "Parallel view",
             "No perspective: lengths can be compared",
-            ctrl(Key::Num9),
+            Some(ctrl(Key::Num9)),
             CLIP,
         )
         .switch(|now| now.is_parallel),
-        entry(V, A::LookXy, "Look at plane xy", "Straight view of plane xy", ctrl(Key::Num1), CLIP).group(),
+        entry(V, A::LookXy, "Look at plane xy", "Straight view of plane xy", Some(ctrl(Key::Num1)), CLIP).group(),
         entry(
             V,
             A::LookZx,
             "Look at plane zx",
             "Straight view of plane zx, from above",
-            ctrl(Key::Num2),
+            Some(ctrl(Key::Num2)),
             CLIP,
         ),
-        entry(V, A::LookYz, "Look at plane yz", "Straight view of plane yz", ctrl(Key::Num3), CLIP),
+        entry(V, A::LookYz, "Look at plane yz", "Straight view of plane yz", Some(ctrl(Key::Num3)), CLIP),
         entry(
             V,
             A::LookXyBack,
             "Look at xy from behind",
             "The other side of plane xy",
-            ctrl(Key::Num4),
+            Some(ctrl(Key::Num4)),
             CLIP,
         ),
-        entry(V, A::LookZxBack, "Look at zx from below", "The other side of plane zx", ctrl(Key::Num5), CLIP),
+        entry(V, A::LookZxBack, "Look at zx from below", "The other side of plane zx", Some(ctrl(Key::Num5)), CLIP),
         entry(
             V,
             A::LookYzBack,
             "Look at yz from behind",
             "The other side of plane yz",
-            ctrl(Key::Num6),
+            Some(ctrl(Key::Num6)),
             CLIP,
         ),
         entry(
@@ -335,7 +336,7 @@ pub const TABLE: &[Entry] = &{
             A::PlaneAngles,
             "Curves of plane angles",
             CurveView::PlaneAngles.explanation(),
-            alt(Key::Num1),
+            Some(alt(Key::Num1)),
             CLIP,
         )
         .switch(|now| matches!(now.curve_view, Some(CurveView::PlaneAngles)))
@@ -345,7 +346,7 @@ pub const TABLE: &[Entry] = &{
             A::SwingTwist,
             "Curves of swing and twist",
             CurveView::SwingTwist.explanation(),
-            alt(Key::Num2),
+            Some(alt(Key::Num2)),
             CLIP,
         )
         .switch(|now| matches!(now.curve_view, Some(CurveView::SwingTwist))),
@@ -354,13 +355,13 @@ pub const TABLE: &[Entry] = &{
             A::FileNumbers,
             "Curves of the file's own numbers",
             CurveView::FileNumbers.explanation(),
-            alt(Key::Num3),
+            Some(alt(Key::Num3)),
             CLIP,
         )
         .switch(|now| matches!(now.curve_view, Some(CurveView::FileNumbers))),
-        entry(V, A::TurnRate, "Curve of turn rate", CurveView::TurnRate.explanation(), alt(Key::Num4), CLIP)
+        entry(V, A::TurnRate, "Curve of turn rate", CurveView::TurnRate.explanation(), Some(alt(Key::Num4)), CLIP)
             .switch(|now| matches!(now.curve_view, Some(CurveView::TurnRate))),
-        entry(V, A::HeatTurnRate, "Map turn rate", "Colour = how fast a joint turns", alt(Key::Num5), CLIP)
+        entry(V, A::HeatTurnRate, "Map turn rate", "Colour = how fast a joint turns", Some(alt(Key::Num5)), CLIP)
             .switch(|now| matches!(now.heat_kind, Some(HeatKind::TurnRate)))
             .group(),
         entry(
@@ -368,7 +369,7 @@ pub const TABLE: &[Entry] = &{
             A::HeatChange,
             "Map change",
             "Colour = how far the result is from the source",
-            alt(Key::Num6),
+            Some(alt(Key::Num6)),
             CLIP,
         )
         .switch(|now| matches!(now.heat_kind, Some(HeatKind::Change))),
@@ -377,18 +378,18 @@ pub const TABLE: &[Entry] = &{
             A::WorstFirst,
             "Worst joint first",
             "Order the turn map by its hottest rows",
-            alt(Key::Num7),
+            Some(alt(Key::Num7)),
             CLIP,
         )
         .switch(|now| now.worst_first),
-        entry(V, A::WholeTime, "Show all time", "The whole clip from left to right", alt(Key::Num0), CLIP)
+        entry(V, A::WholeTime, "Show all time", "The whole clip from left to right", Some(alt(Key::Num0)), CLIP)
             .group(),
         entry(
             V,
             A::NearerTime,
             "Zoom in on time",
             "Half as long a stretch, around the playhead",
-            alt(Key::ArrowUp),
+            Some(alt(Key::ArrowUp)),
             CLIP,
         ),
         entry(
@@ -396,7 +397,7 @@ pub const TABLE: &[Entry] = &{
             A::FartherTime,
             "Zoom out of time",
             "Twice as long a stretch, around the playhead",
-            alt(Key::ArrowDown),
+            Some(alt(Key::ArrowDown)),
             CLIP,
         ),
         entry(
@@ -404,7 +405,7 @@ pub const TABLE: &[Entry] = &{
             A::ShowBefore,
             "Show source as well",
             "The source in thin grey beside the result",
-            ctrl(Key::G),
+            Some(ctrl(Key::G)),
             CLIP,
         )
         .switch(|now| now.shows_before)
@@ -414,23 +415,23 @@ pub const TABLE: &[Entry] = &{
             A::SourceAlone,
             "Show source alone",
             "The source in place of the result. Hold Ctrl+B to look for a moment",
-            ctrl_shift(Key::B),
+            Some(ctrl_shift(Key::B)),
             CLIP,
         )
         .switch(|now| now.shows_source_alone),
-        entry(V, A::PreviousJoint, "Previous joint", "Choose the joint above", ctrl(Key::ArrowUp), CLIP)
+        entry(V, A::PreviousJoint, "Previous joint", "Choose the joint above", Some(ctrl(Key::ArrowUp)), CLIP)
             .group(),
-        entry(V, A::NextJoint, "Next joint", "Choose the joint below", ctrl(Key::ArrowDown), CLIP),
-        entry(V, A::Light, "Light window", "Dark on light", ctrl(Key::D), ALWAYS)
+        entry(V, A::NextJoint, "Next joint", "Choose the joint below", Some(ctrl(Key::ArrowDown)), CLIP),
+        entry(V, A::Light, "Light window", "Dark on light", Some(ctrl(Key::D)), ALWAYS)
             .switch(|now| now.is_light)
             .group(),
-        entry(S, A::FindAgain, "Find again", "Look for snags in the source anew", plain(Key::F5), CLIP),
-        entry(S, A::StopFinding, "Stop finding", "Stop looking for snags", shift(Key::F5), |now| {
+        entry(S, A::FindAgain, "Find again", "Look for snags in the source anew", Some(plain(Key::F5)), CLIP),
+        entry(S, A::StopFinding, "Stop finding", "Stop looking for snags", Some(shift(Key::F5)), |now| {
             now.is_finding
         }),
-        entry(S, A::PreviousSnag, "Previous snag", "Jump to the snag above", shift(Key::F8), SNAGS).group(),
-        entry(S, A::NextSnag, "Next snag", "Jump to the snag below", plain(Key::F8), SNAGS),
-        entry(S, A::Mend, "Mend", "Mend the chosen snag", ctrl(Key::Enter), |now| {
+        entry(S, A::PreviousSnag, "Previous snag", "Jump to the snag above", Some(shift(Key::F8)), SNAGS).group(),
+        entry(S, A::NextSnag, "Next snag", "Jump to the snag below", Some(plain(Key::F8)), SNAGS),
+        entry(S, A::Mend, "Mend", "Mend the chosen snag", Some(ctrl(Key::Enter)), |now| {
             now.has_snag && !now.snag_is_mended
         })
         .group(),
@@ -439,7 +440,7 @@ pub const TABLE: &[Entry] = &{
             A::MendKind,
             "Mend all of this kind",
             "Mend every open snag of the chosen one's kind",
-            ctrl_shift(Key::Enter),
+            Some(ctrl_shift(Key::Enter)),
             SNAG,
         ),
         entry(
@@ -447,7 +448,7 @@ pub const TABLE: &[Entry] = &{
             A::MendSafe,
             "Mend all safe",
             "Mend every open snag whose mend needs no judgement",
-            ctrl(Key::M),
+            Some(ctrl(Key::M)),
             |now| now.safe_snags > 0,
         ),
         entry(
@@ -455,26 +456,26 @@ pub const TABLE: &[Entry] = &{
             A::TakeBack,
             "Take mend back",
             "The chosen snag is open again",
-            ctrl(Key::Backspace),
+            Some(ctrl(Key::Backspace)),
             |now| now.snag_is_mended,
         ),
-        entry(S, A::Leave, "Leave", "The chosen snag is meant, or not worth it", ctrl(Key::Delete), SNAG)
+        entry(S, A::Leave, "Leave", "The chosen snag is meant, or not worth it", Some(ctrl(Key::Delete)), SNAG)
             .switch(|now| now.snag_is_left),
-        entry(P, A::Play, "Play", "Play or pause", plain(Key::Space), CLIP).switch(|now| now.is_playing),
-        entry(P, A::StepBack, "Frame back", "One frame back", plain(Key::ArrowLeft), CLIP).group(),
-        entry(P, A::StepForward, "Frame forward", "One frame forward", plain(Key::ArrowRight), CLIP),
+        entry(P, A::Play, "Play", "Play or pause", Some(plain(Key::Space)), CLIP).switch(|now| now.is_playing),
+        entry(P, A::StepBack, "Frame back", "One frame back", Some(plain(Key::ArrowLeft)), CLIP).group(),
+        entry(P, A::StepForward, "Frame forward", "One frame forward", Some(plain(Key::ArrowRight)), CLIP),
         entry(
             P,
             A::PreviousKey,
             "Previous key",
             "To the chosen joint's key before",
-            ctrl(Key::ArrowLeft),
+            Some(ctrl(Key::ArrowLeft)),
             JOINT,
         ),
-        entry(P, A::NextKey, "Next key", "To the chosen joint's key after", ctrl(Key::ArrowRight), JOINT),
-        entry(P, A::First, "To the start", "To the first frame", plain(Key::Home), CLIP),
-        entry(P, A::Last, "To the end", "To the last frame", plain(Key::End), CLIP),
-        entry(P, A::Loop, "Loop", "Start over at the end", ctrl(Key::L), CLIP)
+        entry(P, A::NextKey, "Next key", "To the chosen joint's key after", Some(ctrl(Key::ArrowRight)), JOINT),
+        entry(P, A::First, "To the start", "To the first frame", Some(plain(Key::Home)), CLIP),
+        entry(P, A::Last, "To the end", "To the last frame", Some(plain(Key::End)), CLIP),
+        entry(P, A::Loop, "Loop", "Start over at the end", Some(ctrl(Key::L)), CLIP)
             .switch(|now| now.is_looping)
             .group(),
         entry(
@@ -482,16 +483,16 @@ pub const TABLE: &[Entry] = &{
             A::LoopFrom,
             "Loop from here",
             "The loop starts at the playhead",
-            ctrl(Key::OpenBracket),
+            Some(ctrl(Key::OpenBracket)),
             CLIP,
         ),
-        entry(P, A::LoopTo, "Loop to here", "The loop ends at the playhead", ctrl(Key::CloseBracket), CLIP),
-        entry(P, A::LoopAll, "Loop whole clip", "Forget the loop range", ctrl(Key::Backslash), |now| {
+        entry(P, A::LoopTo, "Loop to here", "The loop ends at the playhead", Some(ctrl(Key::CloseBracket)), CLIP),
+        entry(P, A::LoopAll, "Loop whole clip", "Forget the loop range", Some(ctrl(Key::Backslash)), |now| {
             now.has_loop_range
         }),
-        entry(P, A::Slower, "Slower", "Play at the next slower speed", ctrl(Key::Comma), CLIP).group(),
-        entry(P, A::Faster, "Faster", "Play at the next faster speed", ctrl(Key::Period), CLIP),
-        entry(H, A::Shortcuts, "Shortcuts", "All actions and their keys", plain(Key::F1), ALWAYS),
+        entry(P, A::Slower, "Slower", "Play at the next slower speed", Some(ctrl(Key::Comma)), CLIP).group(),
+        entry(P, A::Faster, "Faster", "Play at the next faster speed", Some(ctrl(Key::Period)), CLIP),
+        entry(H, A::Shortcuts, "Shortcuts", "All actions and their keys", Some(plain(Key::F1)), ALWAYS),
         entry(H, A::WhatsNew, "What's new", "What has changed from version to version", None, ALWAYS),
         entry(H, A::About, "About Turnwright", "Version, licences and cautions", None, ALWAYS),
     ]
@@ -560,6 +561,8 @@ pub enum Command {
     HoverJoint(usize),
     /// Open files.
     OpenFiles(Vec<PathBuf>),
+    /// Open a CSV file with these columns, in this unit of time.
+    OpenTable(PathBuf, NamedColumns, Option<TimeUnit>),
     /// Save the scene there.
     SaveTo(PathBuf),
     /// Export the clip there.
@@ -618,10 +621,10 @@ mod tests {
 
     #[test]
     fn without_a_document_only_what_needs_none_is_on_offer() {
+        use Action as A;
         let nothing = Situation::default();
         let offered: Vec<Action> =
             TABLE.iter().filter(|entry| (entry.is_available)(&nothing)).map(|entry| entry.action).collect();
-        use Action as A;
         let expected =
             [A::Open, A::OpenPath, A::OpenDemo, A::Quit, A::Light, A::Shortcuts, A::WhatsNew, A::About];
         assert_eq!(offered, expected);

@@ -1,7 +1,7 @@
 //! The desktop's own file dialog, asked on a thread so that the window never waits for it.
 
 use std::future::Future;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::pin::pin;
 use std::sync::Arc;
 use std::sync::mpsc::{Receiver, Sender, channel};
@@ -64,7 +64,7 @@ impl FilePicker {
         let sender = self.sender.clone();
         let run = move || {
             let start = Instant::now();
-            let paths = dialog(purpose, suggestion);
+            let paths = dialog(purpose, &suggestion);
             let is_missing = paths.is_empty() && start.elapsed() < UNSEEN;
             // The window may be gone by now.
             let _ = sender.send(Picked { purpose, paths, is_missing });
@@ -84,8 +84,8 @@ impl FilePicker {
     }
 }
 
-fn dialog(purpose: Purpose, suggestion: PathBuf) -> Vec<PathBuf> {
-    let folder = if suggestion.is_dir() { Some(suggestion.as_path()) } else { suggestion.parent() };
+fn dialog(purpose: Purpose, suggestion: &Path) -> Vec<PathBuf> {
+    let folder = if suggestion.is_dir() { Some(suggestion) } else { suggestion.parent() };
     let mut dialog = rfd::AsyncFileDialog::new();
     if let Some(folder) = folder.filter(|folder| folder.is_dir()) {
         dialog = dialog.set_directory(folder);

@@ -35,7 +35,7 @@ impl Slot {
     /// What the progress bar says.
     pub const fn label(self) -> &'static str {
         match self {
-            Self::Open => "Reading",
+            Self::Open | Self::Relocate => "Reading",
             Self::Survey => "Finding snags",
             Self::Evaluate => "Running passes",
             Self::Heat => "Drawing the turn map",
@@ -43,7 +43,6 @@ impl Slot {
             Self::TipPath => "Following the tip",
             Self::Save => "Saving",
             Self::Export => "Exporting",
-            Self::Relocate => "Reading",
         }
     }
 
@@ -226,7 +225,9 @@ fn work_through<A>(lane: &Lane<A>, sender: &Sender<(Arc<Watch>, Option<A>)>, wak
             queue.0.pop_front()
         };
         let Some(Queued { watch, work }) = next else { continue };
-        let answer = if watch.is_cancelled() { None } else { work(&watch) };
+        // A panic in a job is a bug of ours, but it must not take the thread and all later jobs with it.
+        let run = || if watch.is_cancelled() { None } else { work(&watch) };
+        let answer = std::panic::catch_unwind(std::panic::AssertUnwindSafe(run)).unwrap_or(None);
         if sender.send((watch, answer)).is_err() {
             return;
         }

@@ -67,6 +67,7 @@ impl Window {
             }
             Command::HoverJoint(joint) => self.pictures.hovered = Some(joint),
             Command::OpenFiles(paths) => self.open_or_ask(Then::Open(paths)),
+            Command::OpenTable(path, columns, unit) => self.open_table(path, columns, unit),
             Command::SaveTo(path) => self.save_to(path),
             Command::ExportTo(path) => self.export_to(path),
             Command::RelocateTo(source, path) => self.relocate_to(source, path),
@@ -86,11 +87,11 @@ impl Window {
     }
 
     fn act(&mut self, action: Action, ctx: &Context) {
+        use Action as A;
         let now = self.situation();
         if !(action.entry().is_available)(&now) {
             return;
         }
-        use Action as A;
         match action {
             A::Open => self.open_or_ask(Then::AskForFiles),
             A::OpenPath => self.open_or_ask(Then::AskForPath),

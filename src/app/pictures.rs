@@ -112,6 +112,8 @@ pub(crate) struct Pictures {
     pub hovered: Option<usize>,
     /// A joint that lists are to bring into view.
     pub scroll_to_joint: Option<usize>,
+    /// The press that is held in the turn map began on the mark of a snag.
+    pub press_is_on_mark: bool,
     /// The snag table is to bring the chosen snag into view.
     pub scroll_to_snag: bool,
 }

@@ -18,6 +18,7 @@
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
 //! | `gui_start` | the real program where no window can open |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
+//! | `gui_window` | the whole window, driven by accessible labels; what is asserted is the document |
 //! | `raster` | small pictures of one subject each |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
@@ -43,6 +44,8 @@ mod gui_paint;
 mod gui_screen;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
+#[cfg(feature = "gui-tests")]
+mod gui_window;
 mod layers;
 mod planter;
 mod proof;

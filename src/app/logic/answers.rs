@@ -1,6 +1,6 @@
 //! The answers of jobs, taken in between frames.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use egui::Context;
@@ -24,6 +24,15 @@ pub(crate) enum Answer {
         result: Result<Vec<Arc<Source>>, String>,
         /// The clip that was asked for by name.
         clip: Option<String>,
+    },
+    /// A CSV file's columns have to be named by a person.
+    NeedsColumns {
+        /// The file.
+        path: PathBuf,
+        /// What its header says.
+        names: Vec<String>,
+        /// What was missing.
+        error: String,
     },
     /// A scene was read, or not.
     SceneOpened(Result<Box<OpenedScene>, String>),
@@ -98,6 +107,11 @@ impl Window {
     fn take_answer(&mut self, answer: Answer, ctx: &Context) {
         match answer {
             Answer::Opened { result, clip } => self.take_opened(result, clip.as_deref()),
+            Answer::NeedsColumns { names, error, .. } if names.len() < 5 => self.tell(Message::error(error)),
+            Answer::NeedsColumns { path, names, .. } => {
+                self.form = Form::with_columns(&names);
+                self.dialog = Some(Dialog::Columns(path, names));
+            }
             Answer::SceneOpened(result) => self.take_scene(result),
             Answer::Surveyed { serial, work, snags } => {
                 if let Some(findings) =
@@ -117,7 +131,7 @@ impl Window {
             Answer::Curves(curves) => self.bench.curves = Some(curves),
             Answer::TipPath(path) => self.bench.tip_path = Some(path),
             Answer::Saved { serial, revision, path, result } => {
-                self.take_saved(serial, revision, path, result, ctx)
+                self.take_saved(serial, revision, &path, result, ctx);
             }
             Answer::Exported(result) => self.take_exported(result),
             Answer::Relocated { serial, index, result } => self.take_relocated(serial, index, result),
@@ -132,7 +146,10 @@ impl Window {
         let sources = match result {
             Ok(sources) => sources,
             Err(error) => {
-                self.tell(Message::error(error));
+                match &self.dialog {
+                    Some(Dialog::Columns(..)) => self.form.error = Some(error),
+                    _ => self.tell(Message::error(error)),
+                }
                 return;
             }
         };
@@ -238,7 +255,7 @@ impl Window {
         &mut self,
         serial: u64,
         revision: Revision,
-        path: PathBuf,
+        path: &Path,
         result: Result<(), String>,
         ctx: &Context,
     ) {
@@ -251,7 +268,7 @@ impl Window {
             return;
         }
         let Some(project) = self.project_mut(serial) else { return };
-        project.scene_path = Some(path.clone());
+        project.scene_path = Some(path.to_owned());
         if project.history.revision() == revision {
             project.history.mark_saved();
         }
@@ -322,7 +339,7 @@ impl Window {
         let first = picked.paths.first().cloned();
         match (picked.purpose, first) {
             (Purpose::Open, Some(_)) => {
-                self.commands.push(super::super::commands::Command::OpenFiles(picked.paths))
+                self.commands.push(super::super::commands::Command::OpenFiles(picked.paths));
             }
             (Purpose::Open, None) if picked.is_missing => {
                 let folder = self.usual_folder();

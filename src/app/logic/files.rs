@@ -13,7 +13,8 @@ use super::super::view_models::{Changes, changes, counted};
 use super::super::window::Window;
 use super::answers::Answer;
 use crate::demo;
-use crate::exchange::{self, ClipAddress, Guard, OpenOptions, Source, disk, ron};
+use crate::exchange::csv::{CsvErrorKind, CsvOptions, NamedColumns, TimeUnit};
+use crate::exchange::{self, ClipAddress, Guard, OpenError, OpenOptions, Source, disk, ron};
 use crate::scene::{Document, Edit, Evaluator, SourceRef};
 
 /// A scene as read, with its files as far as they were found.
@@ -118,10 +119,27 @@ impl Window {
                 }
                 match exchange::open(&address.path, &OpenOptions::default()) {
                     Ok(source) => sources.push(Arc::new(source)),
-                    Err(error) => return Some(Answer::Opened { result: Err(error.to_string()), clip }),
+                    Err(error) => {
+                        return Some(match unknown_header(&error) {
+                            Some((path, names)) => {
+                                Answer::NeedsColumns { path, names, error: error.to_string() }
+                            }
+                            None => Answer::Opened { result: Err(error.to_string()), clip },
+                        });
+                    }
                 }
             }
             Some(Answer::Opened { result: Ok(sources), clip })
+        });
+    }
+
+    /// Reads a CSV file whose columns had to be named.
+    pub(super) fn open_table(&mut self, path: PathBuf, columns: NamedColumns, unit: Option<TimeUnit>) {
+        self.jobs.submit(Slot::Open, move |_| {
+            let csv = CsvOptions { columns: Some(columns), time_unit: unit, ..CsvOptions::default() };
+            let result = exchange::open(&path, &OpenOptions { csv });
+            let result = result.map(|source| vec![Arc::new(source)]).map_err(|error| error.to_string());
+            Some(Answer::Opened { result, clip: None })
         });
     }
 
@@ -285,6 +303,19 @@ impl Window {
         let wake = ctx.clone();
         self.picker.ask(purpose, PathBuf::from(typed), move || wake.request_repaint());
     }
+}
+
+/// The file and its column names, when it could not be opened because nobody knows what its columns are.
+fn unknown_header(error: &OpenError) -> Option<(PathBuf, Vec<String>)> {
+    let OpenError::Csv { path, source } = error else { return None };
+    let CsvErrorKind::Unexpected { expected, .. } = &source.kind else { return None };
+    if !expected.contains("--columns") {
+        return None;
+    }
+    let text = String::from_utf8_lossy(&disk::read(path).ok()?).into_owned();
+    let header = text.lines().nth((source.line as usize).checked_sub(1)?)?;
+    let names = header.split(',').map(|name| name.trim().trim_matches('"').to_owned()).collect();
+    Some((path.clone(), names))
 }
 
 fn absolute(path: &Path) -> String {

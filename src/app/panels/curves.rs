@@ -190,24 +190,41 @@ fn draw_curve(
         flush(&mut points);
         return;
     }
-    // More samples than pixels: from each pixel's smallest to its largest, in turns, so that the line stays one.
+    // More samples than pixels: for each column of pixels the span from its smallest to its largest value.
+    let columns = columns as usize;
+    let mut spans: Vec<Option<[f32; 2]>> = Vec::with_capacity(columns);
     let mut from = first;
-    for column in 0..columns as usize {
-        let x = axis.span.min + column as f32 + 0.5;
-        let to = (times.place(axis.time(x + 0.5)).ceil() as usize).clamp(from, last + 1);
-        if let Some([low, high]) = row.min_max(from..to) {
-            let (low, high) = (values.y(low.into()), values.y(high.into()));
-            if (low - high).abs() < 0.75 {
-                points.push(pos2(x, f32::midpoint(low, high)));
-            } else if column % 2 == 0 {
-                points.extend([pos2(x, low), pos2(x, high)]);
-            } else {
-                points.extend([pos2(x, high), pos2(x, low)]);
-            }
-        }
+    for column in 0..columns {
+        let right = axis.span.min + column as f32 + 1.0;
+        let to = (times.place(axis.time(right)).ceil() as usize).clamp(from, last + 1);
+        // One sample more, so that neighbouring columns meet.
+        let found = row.min_max(from.saturating_sub(1)..to);
+        spans.push(found.map(|[low, high]| [values.y(high.into()), values.y(low.into())]));
         from = to.max(from);
     }
-    flush(&mut points);
+    let total: f32 = spans.iter().flatten().map(|[top, bottom]| bottom - top).sum();
+    if total < 3.0 * columns as f32 {
+        for (column, span) in spans.iter().enumerate() {
+            match span {
+                Some([top, bottom]) => {
+                    points.push(pos2(axis.span.min + column as f32 + 0.5, f32::midpoint(*top, *bottom)));
+                }
+                None => flush(&mut points),
+            }
+        }
+        flush(&mut points);
+        return;
+    }
+    // A curve that goes up and down within a pixel is a band: upright boxes are drawn much faster than a line.
+    let mut mesh = egui::Mesh::default();
+    for (column, span) in spans.iter().enumerate() {
+        let Some([top, bottom]) = *span else { continue };
+        let left = axis.span.min + column as f32;
+        let spare = ((stroke.width - (bottom - top)) / 2.0).max(0.0);
+        let bounds = Rect::from_min_max(pos2(left, top - spare), pos2(left + 1.0, bottom + spare));
+        mesh.add_colored_rect(bounds, stroke.color);
+    }
+    painter.add(Shape::mesh(mesh));
 }
 
 /// Keys as round pips, where they lie far enough apart to be told.
@@ -297,9 +314,10 @@ fn legend_ui(painter: &Painter, look: &Look, area: Rect, set: &CurveSet, now: f6
         let shown = if source_alone { &line.before } else { line.shown() };
         let ink = look.text;
         let end = painter.text(pos2(left + 17.0, y), Align2::LEFT_CENTER, value(shown), mono.clone(), ink);
-        if line.after.is_some() && !source_alone && area.height() > 44.0 * set.lines.len() as f32 {
+        let words = format!("was {}", value(&line.before));
+        let differs = value(&line.before) != value(shown);
+        if differs && !source_alone && area.height() > 50.0 * set.lines.len() as f32 {
             y += 14.0;
-            let words = format!("was {}", value(&line.before));
             painter.text(pos2(end.left(), y), Align2::LEFT_CENTER, words, mono, look.before);
         }
         y += 19.0;

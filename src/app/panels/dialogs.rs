@@ -9,8 +9,9 @@ use egui::{
 use super::super::bench::file_name;
 use super::super::commands::{Command, HOLD_FOR_SOURCE, MORE_KEYS, Menu, TABLE};
 use super::super::file_picker::Purpose;
-use super::super::view_models::{Memo, counted, degrees};
+use super::super::view_models::{Memo, counted, pass_rows};
 use super::Scope;
+use crate::exchange::csv::{NamedColumns, TimeUnit};
 use crate::exchange::disk;
 
 /// What is to happen once unsaved work is dealt with.
@@ -39,6 +40,8 @@ pub(crate) enum Dialog {
     Export,
     /// Where a missing source is.
     Relocate(usize),
+    /// What the columns of a CSV file are.
+    Columns(PathBuf, Vec<String>),
     /// Which clip of several.
     ChooseClip,
     /// Unsaved work.
@@ -62,6 +65,10 @@ pub(crate) struct Form {
     pub error: Option<String>,
     /// Words looked for in the list of keys.
     pub search: String,
+    /// Which columns hold the time, and w, x, y, z.
+    pub columns: [usize; 5],
+    /// The unit of the time column; without it what the header says, else seconds.
+    pub time_unit: Option<TimeUnit>,
     /// What lies in the folder of the path.
     listing: Memo<PathBuf, Result<Vec<disk::Entry>, String>>,
     /// The field has been given the keyboard.
@@ -73,13 +80,41 @@ impl Form {
     pub(crate) fn with_path(path: impl Into<String>) -> Self {
         Self { path: path.into(), ..Self::default() }
     }
+
+    /// A guess at what the columns are: by their names, else the first five in order.
+    pub(crate) fn with_columns(names: &[String]) -> Self {
+        let like = |wanted: &[&str]| {
+            names.iter().position(|name| {
+                let name = name.to_lowercase();
+                wanted.iter().any(|word| {
+                    name == *word
+                        || name.ends_with(&format!("_{word}"))
+                        || name.ends_with(&format!(".{word}"))
+                })
+            })
+        };
+        let guesses = [
+            like(&["time", "t", "timestamp", "time_s", "ms", "us"]),
+            like(&["w", "qw", "q0"]),
+            like(&["x", "qx", "q1"]),
+            like(&["y", "qy", "q2"]),
+            like(&["z", "qz", "q3"]),
+        ];
+        let mut columns = [0, 1, 2, 3, 4];
+        for (column, guess) in columns.iter_mut().zip(guesses) {
+            *column = guess.unwrap_or(*column);
+        }
+        Self { columns, ..Self::default() }
+    }
 }
 
 const CHANGES: &str = include_str!("../../../assets/CHANGELOG.md");
 
 /// Draws the dialog, if there is one.
 pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, scope: &mut Scope<'_>) {
-    let response = Modal::new(egui::Id::unique("dialog")).show(ctx, |ui| {
+    let frame = egui::Frame::popup(&ctx.global_style()).inner_margin(egui::Margin::same(18));
+    let modal = Modal::new(egui::Id::unique("dialog")).frame(frame);
+    let response = modal.show(ctx, |ui| {
         let room = ctx.content_rect().size() - vec2(80.0, 80.0);
         let wanted = match dialog {
             Dialog::Shortcuts => vec2(680.0, 560.0),
@@ -96,6 +131,7 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
             Dialog::SavePath => path_sheet(ui, "Save scene as", "Save", Purpose::Save, form, scope),
             Dialog::Relocate(source) => relocate_sheet(ui, *source, form, scope),
             Dialog::Export => export_sheet(ui, form, scope),
+            Dialog::Columns(path, names) => columns_sheet(ui, path, names, form, scope),
             Dialog::ChooseClip => clips_sheet(ui, scope),
             Dialog::Unsaved(_) => unsaved_sheet(ui, scope),
             Dialog::History => history_sheet(ui, scope),
@@ -195,7 +231,7 @@ fn path_ui(
                     };
                     let found: Vec<_> = entries.iter().filter(wanted).take(400).collect();
                     if found.is_empty() {
-                        ui.label(RichText::new("Nothing here that can be opened").color(look_faint));
+                        ui.label(RichText::new("No file here whose name begins so").color(look_faint));
                     }
                     for entry in found {
                         let words =
@@ -301,16 +337,9 @@ fn export_sheet(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>) {
     let summary = evaluated
         .map_or("The passes are still being run…".to_owned(), |evaluated| evaluated.changes.sentence());
     ui.label(RichText::new(summary).size(14.5).color(scope.look.text));
-    if let Some(evaluated) = evaluated {
-        let titles = scope.bench.work().map(|work| work.passes.clone()).unwrap_or_default();
-        for stage in evaluated.evaluation.stages.iter().take(7) {
-            let title = titles.iter().find(|pass| pass.id == stage.pass).map(|pass| pass.step.title());
-            let joints = counted(stage.joints_changed, "joint");
-            let words = format!(
-                "{}: {joints}, up to {}",
-                title.unwrap_or_default(),
-                degrees(stage.change_rad.to_degrees())
-            );
+    if let (Some(evaluated), Some(work)) = (evaluated, scope.bench.work()) {
+        for row in pass_rows(work, Some(&evaluated.evaluation)).into_iter().take(7) {
+            let words = format!("{}: {}", row.title, row.problem.unwrap_or(row.change));
             ui.label(RichText::new(words).size(12.5).color(scope.look.faint));
         }
     }
@@ -344,6 +373,46 @@ fn export_sheet(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>) {
         meant = Some(PathBuf::from(&typed));
     }
     scope.out.extend(meant.map(Command::ExportTo));
+}
+
+fn columns_sheet(ui: &mut Ui, path: &Path, names: &[String], form: &mut Form, scope: &mut Scope<'_>) {
+    heading(ui, "Which columns are the turns?");
+    let words = format!(
+        "{} has a header of its own. Say which columns hold the time and the four parts of the quaternion",
+        file_name(path)
+    );
+    ui.add(egui::Label::new(RichText::new(words).color(scope.look.faint)).wrap());
+    ui.add_space(4.0);
+    egui::Grid::new("columns").num_columns(2).spacing([16.0, 8.0]).show(ui, |ui| {
+        for (what, chosen) in ["time", "w", "x", "y", "z"].into_iter().zip(&mut form.columns) {
+            ui.label(what);
+            let known = names.get(*chosen).cloned().unwrap_or_default();
+            let combo = egui::ComboBox::from_id_salt(("column", what)).selected_text(known).width(220.0);
+            let response = combo
+                .show_ui(ui, |ui| {
+                    for (index, name) in names.iter().enumerate() {
+                        ui.selectable_value(chosen, index, name);
+                    }
+                })
+                .response;
+            response.widget_info(|| WidgetInfo::labeled(Role::ComboBox, true, format!("Column of {what}")));
+            ui.end_row();
+        }
+        ui.label("time is in");
+        ui.horizontal(|ui| {
+            ui.radio_value(&mut form.time_unit, None, "as the header says");
+            ui.radio_value(&mut form.time_unit, Some(TimeUnit::Seconds), "s");
+            ui.radio_value(&mut form.time_unit, Some(TimeUnit::Milliseconds), "ms");
+            ui.radio_value(&mut form.time_unit, Some(TimeUnit::Microseconds), "µs");
+        });
+        ui.end_row();
+    });
+    error_ui(ui, form, scope);
+    if buttons(ui, "Open", true, scope, |_, _| {}) {
+        let name = |place: usize| names.get(form.columns[place]).cloned().unwrap_or_default();
+        let columns = NamedColumns { time: name(0), xyzw: [name(2), name(3), name(4), name(1)] };
+        scope.out.push(Command::OpenTable(path.to_owned(), columns, form.time_unit));
+    }
 }
 
 fn clips_sheet(ui: &mut Ui, scope: &mut Scope<'_>) {
@@ -519,9 +588,9 @@ fn key_row(ui: &mut Ui, scope: &Scope<'_>, label: &str, keys: &str, tooltip: &st
     ui.painter().text(at(196.0), left, keys, FontId::monospace(12.0), look.text);
     let mut job =
         egui::text::LayoutJob::simple_singleline(tooltip.to_owned(), FontId::proportional(12.0), look.faint);
-    job.wrap = egui::text::TextWrapping::truncate_at_width((bounds.width() - 350.0).max(10.0));
+    job.wrap = egui::text::TextWrapping::truncate_at_width((bounds.width() - 372.0).max(10.0));
     let galley = ui.painter().layout_job(job);
-    ui.painter().galley(egui::pos2(bounds.left() + 340.0, y - galley.size().y / 2.0), galley, look.faint);
+    ui.painter().galley(egui::pos2(bounds.left() + 362.0, y - galley.size().y / 2.0), galley, look.faint);
     response.on_hover_text(tooltip);
 }
 

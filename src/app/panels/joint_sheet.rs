@@ -2,12 +2,12 @@
 
 use egui::{Align2, FontId, Rect, Role, ScrollArea, Sense, Ui, UiBuilder, WidgetInfo, pos2, vec2};
 
-use super::super::commands::{Action, Command};
+use super::super::commands::Command;
 use super::super::theme::INSET;
 use super::super::view_models::{
     JointNumbers, RotationNumbers, SnagState, counted, degrees, degrees_fixed, joint_numbers, tree_rows,
 };
-use super::super::widgets::{Icon, hint, paint_icon, segment, strip};
+use super::super::widgets::{Icon, hint, paint_icon, strip};
 use super::Scope;
 
 const TREE_ROW: f32 = 20.0;
@@ -20,11 +20,7 @@ pub(crate) fn joint_sheet_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         return;
     };
     let count = source.skeleton.listed().count();
-    strip(ui, &format!("Joints: {count}"), |ui| {
-        if scope.now.has_clip {
-            segment(ui, "Source", Action::ShowBefore, scope.now, scope.out);
-        }
-    });
+    strip(ui, &format!("Joints: {count}"), |_| {});
     let area = ui.available_rect_before_wrap();
     let tree_width = (area.width() * 0.42).clamp(110.0, 260.0);
     let tree = Rect::from_min_size(area.min, vec2(tree_width, area.height()));

@@ -48,6 +48,15 @@ pub(crate) struct Scope<'a> {
     pub look: Look,
 }
 
+/// Lays out a panel inside exactly the room there is: content that is too wide is cut and can't push its panel wider.
+fn held(ui: &mut egui::Ui, content: impl FnOnce(&mut egui::Ui)) {
+    let bounds = ui.available_rect_before_wrap();
+    let mut child = ui.new_child(egui::UiBuilder::new().max_rect(bounds));
+    child.shrink_clip_rect(bounds);
+    content(&mut child);
+    ui.advance_cursor_after_rect(bounds);
+}
+
 /// The whole bench: left is space, right is time.
 pub(crate) fn bench_ui(ui: &mut egui::Ui, scope: &mut Scope<'_>) {
     let size = ui.available_size();
@@ -63,8 +72,8 @@ pub(crate) fn bench_ui(ui: &mut egui::Ui, scope: &mut Scope<'_>) {
                 .resizable(true)
                 .default_size((size.y * 0.40).clamp(180.0, 520.0))
                 .size_range(120.0..=(size.y * 0.7).max(121.0))
-                .show(ui, |ui| joint_sheet::joint_sheet_ui(ui, scope));
-            egui::CentralPanel::no_frame().show(ui, |ui| skeleton::skeleton_ui(ui, scope));
+                .show(ui, |ui| held(ui, |ui| joint_sheet::joint_sheet_ui(ui, scope)));
+            egui::CentralPanel::no_frame().show(ui, |ui| held(ui, |ui| skeleton::skeleton_ui(ui, scope)));
         });
     egui::CentralPanel::no_frame().show(ui, |ui| {
         egui::Panel::bottom("lists")
@@ -76,17 +85,17 @@ pub(crate) fn bench_ui(ui: &mut egui::Ui, scope: &mut Scope<'_>) {
                 egui::Panel::right("passes")
                     .frame(bare)
                     .resizable(true)
-                    .default_size((size.x * 0.23).clamp(240.0, 460.0))
+                    .default_size((size.x * 0.235).clamp(250.0, 460.0))
                     .size_range(190.0..=(size.x * 0.4).max(191.0))
-                    .show(ui, |ui| passes::passes_ui(ui, scope));
-                egui::CentralPanel::no_frame().show(ui, |ui| snags::snags_ui(ui, scope));
+                    .show(ui, |ui| held(ui, |ui| passes::passes_ui(ui, scope)));
+                egui::CentralPanel::no_frame().show(ui, |ui| held(ui, |ui| snags::snags_ui(ui, scope)));
             });
         egui::Panel::top("turn map")
             .frame(bare)
             .resizable(true)
             .default_size((size.y * 0.31).clamp(150.0, 520.0))
             .size_range(110.0..=(size.y * 0.6).max(111.0))
-            .show(ui, |ui| turn_map::turn_map_ui(ui, scope));
-        egui::CentralPanel::no_frame().show(ui, |ui| curves::curves_ui(ui, scope));
+            .show(ui, |ui| held(ui, |ui| turn_map::turn_map_ui(ui, scope)));
+        egui::CentralPanel::no_frame().show(ui, |ui| held(ui, |ui| curves::curves_ui(ui, scope)));
     });
 }

@@ -73,7 +73,9 @@ fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut S
                 if switch.on_hover_text("Take part or not").changed() {
                     scope.out.push(Command::Edit(Edit::SwitchPass { work, pass: row.id, on }));
                 }
-                let buttons = 3.0 * 24.0;
+                let buttons = 3.0 * 24.0 + 2.0;
+                ui.spacing_mut().item_spacing.x = 0.0;
+                ui.add_space(4.0);
                 let (words, _) = ui.allocate_exact_size(
                     vec2((ui.available_width() - buttons).max(30.0), 20.0),
                     Sense::hover(),
@@ -85,7 +87,6 @@ fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut S
                     FontId::proportional(13.5),
                     if row.on { look.text } else { look.faint },
                 );
-                ui.spacing_mut().item_spacing.x = 0.0;
                 let named = |verb: &str| format!("{verb}: {}", row.title);
                 if small_button(ui, Icon::Up, &named("Move up"), place > 0, &look) {
                     scope.out.push(Command::Edit(Edit::MovePass { work, pass: row.id, to: place - 1 }));

@@ -9,7 +9,7 @@ use super::super::commands::{Action, Command};
 use super::super::pictures::{Pictures, SkeletonKey, on_pixels};
 use super::super::session::Fit;
 use super::super::view_models::{FigureRequest, figure_view};
-use super::super::widgets::{Icon, hint, icon_button, strip, tooltip_text};
+use super::super::widgets::{Icon, hint, icon_button, segment, strip, tooltip_text};
 use super::Scope;
 use crate::raster::{Camera, FigureStyle};
 
@@ -23,6 +23,9 @@ pub(crate) fn skeleton_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     strip(ui, title, |ui| {
         icon_button(ui, Icon::Follow, Action::Follow, scope.now, scope.out);
         icon_button(ui, Icon::Fit, Action::Fit, scope.now, scope.out);
+        ui.add_space(6.0);
+        segment(ui, "Alone", Action::SourceAlone, scope.now, scope.out);
+        segment(ui, "Source", Action::ShowBefore, scope.now, scope.out);
     });
     let (Some(source), Some(result)) = (scope.bench.source().cloned(), scope.bench.result().cloned()) else {
         hint(ui, "No figure: the source file is not there");

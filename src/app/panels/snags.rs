@@ -22,12 +22,12 @@ struct Column {
 }
 
 const COLUMNS: [Column; 6] = [
-    Column { words: "Kind", width: 122.0, order: SnagOrder::Kind },
+    Column { words: "Kind", width: 126.0, order: SnagOrder::Kind },
     Column { words: "Joint", width: 0.0, order: SnagOrder::Joint },
     Column { words: "Frames", width: 92.0, order: SnagOrder::Time },
     Column { words: "Size", width: 58.0, order: SnagOrder::Size },
     Column { words: "Sure", width: 52.0, order: SnagOrder::Confidence },
-    Column { words: "State", width: 66.0, order: SnagOrder::State },
+    Column { words: "State", width: 80.0, order: SnagOrder::State },
 ];
 
 /// The panel.
@@ -110,24 +110,35 @@ fn filter_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     }
 }
 
-/// Left and right edge of each column.
-fn edges(left: f32, width: f32) -> [[f32; 2]; COLUMNS.len()] {
+/// The widest the names of joints get while there is something else to show.
+const JOINT_WIDTH: f32 = 190.0;
+
+/// Left and right edge of each column, and of the words that follow where there is room for them.
+struct Edges {
+    columns: [[f32; 2]; COLUMNS.len()],
+    words: Option<[f32; 2]>,
+}
+
+fn edges(left: f32, width: f32) -> Edges {
     let fixed: f32 = COLUMNS.iter().map(|column| column.width).sum();
     let free = (width - fixed - 2.0 * INSET).max(60.0);
+    let has_words = free > JOINT_WIDTH + 160.0;
+    let joint_width = if has_words { JOINT_WIDTH } else { free };
     let mut at = left + INSET;
-    COLUMNS.each_ref().map(|column| {
+    let columns = COLUMNS.each_ref().map(|column| {
         let start = at;
-        at += if column.width == 0.0 { free } else { column.width };
+        at += if column.width == 0.0 { joint_width } else { column.width };
         [start, at - 8.0]
-    })
+    });
+    Edges { columns, words: has_words.then_some([at, left + width - INSET]) }
 }
 
 fn table_ui(ui: &mut Ui, rows: &[SnagRow], scope: &mut Scope<'_>) {
     let look = scope.look;
     let area = ui.available_rect_before_wrap();
     let (header, _) = ui.allocate_exact_size(vec2(area.width(), ROW_HEIGHT), Sense::hover());
-    let columns = edges(header.left(), header.width());
-    for (column, [left, right]) in COLUMNS.iter().zip(columns) {
+    let edges = edges(header.left(), header.width());
+    for (column, [left, right]) in COLUMNS.iter().zip(edges.columns) {
         let cell = Rect::from_x_y_ranges(left - 4.0..=right + 4.0, header.y_range());
         let response = ui.interact(cell, ui.scope_id().with(("column", column.words)), Sense::click());
         let is_on = scope.bench.session.order == column.order;
@@ -154,6 +165,10 @@ fn table_ui(ui: &mut Ui, rows: &[SnagRow], scope: &mut Scope<'_>) {
             scope.out.push(Command::SetOrder(column.order));
         }
     }
+    if let Some([left, _]) = edges.words {
+        let at = pos2(left, header.center().y);
+        ui.painter().text(at, Align2::LEFT_CENTER, "What is wrong", FontId::proportional(12.0), look.faint);
+    }
     ui.painter().hline(header.x_range(), header.bottom(), (1.0, look.line));
     let chosen = scope.bench.session.snag;
     let chosen_place = chosen
@@ -172,7 +187,7 @@ fn table_ui(ui: &mut Ui, rows: &[SnagRow], scope: &mut Scope<'_>) {
         for (place, row) in rows.iter().enumerate().take(last).skip(first) {
             let y = top + place as f32 * ROW_HEIGHT;
             let bounds = Rect::from_min_size(pos2(area.left(), y), vec2(area.width(), ROW_HEIGHT));
-            row_ui(ui, bounds, &columns, row, chosen_place == Some(place), &look, scope.out);
+            row_ui(ui, bounds, &edges, row, chosen_place == Some(place), &look, scope.out);
         }
     });
 }
@@ -180,7 +195,7 @@ fn table_ui(ui: &mut Ui, rows: &[SnagRow], scope: &mut Scope<'_>) {
 fn row_ui(
     ui: &mut Ui,
     bounds: Rect,
-    columns: &[[f32; 2]; COLUMNS.len()],
+    edges: &Edges,
     row: &SnagRow,
     is_chosen: bool,
     look: &Look,
@@ -198,7 +213,7 @@ fn row_ui(
     } else if response.hovered() {
         painter.rect_filled(bounds, 0.0, look.hover);
     }
-    let y = bounds.center().y;
+    let (y, columns) = (bounds.center().y, &edges.columns);
     letter_plate(painter, look, pos2(columns[0][0] + 8.0, y), 14.0, row.letter, row.state);
     let ink = if row.state == SnagState::Open { look.text } else { look.faint };
     let kind = row.kind.to_string();
@@ -221,6 +236,9 @@ fn row_ui(
         }
     }
     cell_ui(painter, row.state.word(), [left + 13.0, right], y, ink, false);
+    if let Some(words) = edges.words {
+        cell_ui(painter, &row.text, words, y, look.faint, false);
+    }
     if response.clicked() {
         out.push(Command::ChooseSnag(row.index));
     }

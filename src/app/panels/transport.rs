@@ -34,8 +34,10 @@ pub(crate) fn transport_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
             let frame = clip.grid.frame(now);
             let last = clip.grid.count().saturating_sub(1);
             let words = format!("{}  /  {}", seconds(now), seconds(clip.duration_secs));
-            number_label(ui, scope, &words, 152.0);
-            number_label(ui, scope, &format!("frame {frame} / {last}"), 138.0);
+            let longest = format!("{0}  /  {0}", seconds(clip.duration_secs));
+            number_label(ui, scope, &words, &longest);
+            let (words, longest) = (format!("frame {frame} / {last}"), format!("frame {last} / {last}"));
+            number_label(ui, scope, &words, &longest);
             let rate = rate_text(&clip.grid);
             ui.label(egui::RichText::new(rate).size(12.0).color(look.faint))
                 .on_hover_text(format!("{} frames a second in the file", clip.grid.rate));
@@ -51,7 +53,10 @@ pub(crate) fn transport_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     });
 }
 
-fn number_label(ui: &mut Ui, scope: &Scope<'_>, words: &str, width: f32) {
+/// Numbers that change, in the room that the longest of them takes, so that nothing beside them moves.
+fn number_label(ui: &mut Ui, scope: &Scope<'_>, words: &str, longest: &str) {
+    let font = FontId::monospace(12.0);
+    let width = ui.painter().layout_no_wrap(longest.to_owned(), font, scope.look.text).size().x + 18.0;
     let (bounds, response) = ui.allocate_exact_size(vec2(width, 20.0), Sense::hover());
     response.widget_info(|| WidgetInfo::labeled(Role::Label, true, words));
     ui.painter().text(

@@ -249,19 +249,23 @@ fn draw_rows(
     let over_time = Rect::from_x_y_ranges(axis.span, body.y_range()).intersect(ui.clip_rect());
     let response = ui.interact(over_time, ui.scope_id().with("turn map"), Sense::click_and_drag());
     response.widget_info(|| WidgetInfo::labeled(Role::Canvas, true, "Turn map rows"));
-    scrub_and_zoom(ui, &response, over_time, axis, clip, false, scope.out);
     let pressed = ui.input(|input| input.pointer.primary_pressed());
     if response.is_pointer_button_down_on()
         && pressed
         && let Some(pointer) = response.interact_pointer_pos()
     {
-        match mark_at(pointer, axis, rows, scope) {
-            Some(index) => scope.out.push(Command::ChooseSnag(index)),
-            None => {
-                let joint = rows.at(pointer.y).map(|place| rows.heat.joints[rows.visible[place]]);
-                scope.out.extend(joint.map(|joint| Command::ChooseJoint(Some(joint))));
-            }
+        let mark = mark_at(pointer, axis, rows, scope);
+        scope.pictures.press_is_on_mark = mark.is_some();
+        if let Some(index) = mark {
+            scope.out.push(Command::ChooseSnag(index));
+        } else {
+            let joint = rows.at(pointer.y).map(|place| rows.heat.joints[rows.visible[place]]);
+            scope.out.extend(joint.map(|joint| Command::ChooseJoint(Some(joint))));
         }
+    }
+    // Going to a snag moves time under the pointer: the press that chose it must not scrub as well.
+    if !(scope.pictures.press_is_on_mark && response.is_pointer_button_down_on()) {
+        scrub_and_zoom(ui, &response, over_time, axis, clip, false, scope.out);
     }
     if let Some(pointer) = response.hover_pos() {
         hover_read_out(ui, pointer, axis, clip, rows, scope);
@@ -271,7 +275,9 @@ fn draw_rows(
 /// The picture of the visible rows, at the size of the screen.
 fn heat_image(key: &MapKey, clip: &Clip, look: &Look, [width, height]: [usize; 2]) -> ColorImage {
     let colors = key.map.shares().map(|share| color32(cividis(share)));
-    let mut image = ColorImage::filled([width, height], look.background);
+    // On a light ground bright lines between dark rows would shout.
+    let parting = color32(look.palette.background.mix(cividis(0.0), if key.is_dark { 0.0 } else { 0.72 }));
+    let mut image = ColorImage::filled([width, height], parting);
     let frames: Vec<usize> =
         (0..=width).map(|column| clip.grid.frame(key.window.time(column as f64 / width as f64))).collect();
     let n_rows = key.rows.len().max(1);

@@ -4,12 +4,32 @@ use glam::{DAffine3, DVec3};
 
 use crate::clip::Clip;
 use crate::raster::{
-    Bounds, Camera, Figure, FigureStyle, Floor, Girth, SceneView, Theme, TipPath, limbs_of_skeleton,
+    Bounds, Camera, Figure, FigureLimb, FigureStyle, Floor, Girth, Label, SceneView, Theme, TipPath,
+    limbs_of_skeleton,
 };
 use crate::skeleton::{Skeleton, Transform};
 use crate::snag::{Cancelled, Progress};
 
 use super::sampled::rotation_at;
+
+/// The limbs of a clip at a time. A skeleton without any length, such as a lone sensor, shows its three axes instead:
+/// otherwise nothing would be seen of how it turns.
+fn limbs_at(clip: &Clip, time_secs: f64) -> Vec<FigureLimb> {
+    let world = clip.world_at(time_secs);
+    let limbs = limbs_of_skeleton(&clip.skeleton, &world);
+    if limbs.iter().any(|limb| limb.from.distance(limb.to) > 0.0) {
+        return limbs;
+    }
+    let axes = |joint: usize| {
+        let own = &world[joint];
+        let from = own.position();
+        DVec3::AXES.map(|axis| FigureLimb { from, to: from + own.rotation.apply(axis) * AXIS_LENGTH, joint })
+    };
+    clip.skeleton.listed().flat_map(axes).collect()
+}
+
+/// World units: a sensor has no size of its own.
+const AXIS_LENGTH: f64 = 1.0;
 
 /// What stays the same for a clip whatever its time: the floor, and where the figure goes.
 #[derive(Clone, Debug, PartialEq)]
@@ -35,7 +55,7 @@ impl Stage {
         let times = (0..=POSES).map(|pose| clip.duration_secs * pose as f64 / POSES as f64);
         let travel = times.filter_map(|time| bounds_at(clip, time)).fold(figure, |all, own| all.union(&own));
         let root = clip.skeleton.listed().next();
-        Self { figure, travel, girth: Girth::of_skeleton(&clip.skeleton), root }
+        Self { figure, travel, girth: Girth::of_limbs(&limbs_at(clip, 0.0)), root }
     }
 
     /// Whether the figure leaves the place where it starts.
@@ -54,9 +74,16 @@ impl Stage {
 
 /// The box around a pose.
 pub fn bounds_at(clip: &Clip, time_secs: f64) -> Option<Bounds> {
-    let world = clip.world_at(time_secs);
-    let limbs = limbs_of_skeleton(&clip.skeleton, &world);
+    let limbs = limbs_at(clip, time_secs);
     Bounds::of_points(limbs.iter().flat_map(|limb| [limb.from, limb.to]))
+}
+
+/// Whether the limbs are the axes that [`limbs_at`] draws for want of limbs.
+fn has_axes(clip: &Clip, limbs: &[FigureLimb]) -> bool {
+    let joints = clip.skeleton.joints();
+    let has_no_size =
+        |joint: usize| joints[joint].tips.is_empty() && clip.skeleton.children(joint).is_empty();
+    clip.skeleton.listed().all(has_no_size) && limbs.len() == 3 * clip.skeleton.listed().count()
 }
 
 /// One joint's frame in the scene, worked out along its ancestors alone.
@@ -108,7 +135,6 @@ pub fn tip_path(clip: &Clip, joint: usize, progress: &dyn Progress) -> Result<Ve
 
 /// What decides the picture of the skeleton view.
 #[derive(Clone, Copy, Debug)]
-#[expect(clippy::struct_excessive_bools, reason = "independent switches of the view")]
 pub struct FigureRequest<'a> {
     /// Size in pixels.
     pub size_px: [usize; 2],
@@ -138,8 +164,8 @@ pub struct FigureRequest<'a> {
     pub tip_path: Option<&'a [DVec3]>,
 }
 
-/// Frames of a tip's way that are drawn before and after the playhead: more would be a ball of wool.
-const PATH_FRAMES: usize = 240;
+/// Seconds of a tip's way that are drawn before and after the playhead: more would be a ball of wool.
+const PATH_SECS: f64 = 0.7;
 
 /// The view to draw.
 pub fn figure_view(stage: &Stage, request: &FigureRequest<'_>) -> SceneView {
@@ -154,7 +180,7 @@ pub fn figure_view(stage: &Stage, request: &FigureRequest<'_>) -> SceneView {
         girth: stage.girth,
         chosen: request.chosen,
         hovered: request.hovered,
-        ..Figure::new(limbs_of_skeleton(&clip.skeleton, &clip.world_at(time_secs)), style)
+        ..Figure::new(limbs_at(clip, time_secs), style)
     };
     let shown = if request.source_alone { source } else { result };
     let differs = !std::ptr::eq(source, result);
@@ -174,11 +200,17 @@ pub fn figure_view(stage: &Stage, request: &FigureRequest<'_>) -> SceneView {
         floor.center.z = (middle.z / floor.step).round() * floor.step;
     }
     view.floor = Some(floor);
+    if has_axes(shown, &figure.limbs) {
+        let names = ["x", "y", "z"].into_iter().cycle();
+        let label = |(limb, name): (&FigureLimb, &str)| Label { at: limb.to, text: name.to_owned() };
+        view.labels.extend(figure.limbs.iter().zip(names).map(label));
+    }
     view.figures.push(figure);
     if let Some(points) = request.tip_path.filter(|points| !points.is_empty()) {
         let now = result.grid.frame(time_secs).min(points.len() - 1);
-        let first = now.saturating_sub(PATH_FRAMES);
-        let last = (now + PATH_FRAMES + 1).min(points.len());
+        let frames = (PATH_SECS * result.grid.rate).ceil().clamp(8.0, 400.0) as usize;
+        let first = now.saturating_sub(frames);
+        let last = (now + frames + 1).min(points.len());
         view.tip_paths.push(TipPath {
             points: points[first..last].to_vec(),
             current: Some(now - first),

@@ -112,7 +112,7 @@ const MOST: f32 = 20_000.0;
 const KNEE: f32 = 1.0;
 
 fn code(value: f32) -> u8 {
-    if !(value > 0.0) {
+    if value.is_nan() || value <= 0.0 {
         return 0;
     }
     let share = (value / KNEE).ln_1p() / (MOST / KNEE).ln_1p();

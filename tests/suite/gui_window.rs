@@ -1,0 +1,436 @@
+//! The window driven without a display, by the accessible labels of its widgets; what is asserted is the document.
+
+use std::path::{Path, PathBuf};
+
+use egui_kittest::Harness;
+use egui_kittest::kittest::{NodeT as _, Queryable as _};
+use turnwright::app::commands::{Action, Command};
+use turnwright::app::paint::CpuRenderer;
+use turnwright::app::view_models::SnagState;
+use turnwright::app::{Screen as _, Start, Window};
+use turnwright::exchange::{ClipAddress, OpenOptions, disk, open};
+use turnwright::snag::SnagKind;
+
+struct Bench<'a>(Harness<'a, Option<Window>>);
+
+impl Bench<'_> {
+    /// A window without threads, so that every run is the same.
+    fn open(start: Start) -> Self {
+        Self::of_size(start, [1440.0, 900.0])
+    }
+
+    fn of_size(start: Start, size: [f32; 2]) -> Self {
+        let harness = Harness::builder().with_size(size).renderer(CpuRenderer::new(2)).build_ui_state(
+            move |ui, window: &mut Option<Window>| {
+                let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
+                window.logic(ui.ctx());
+                window.ui(ui);
+            },
+            None,
+        );
+        let mut bench = Self(harness);
+        bench.run();
+        bench
+    }
+
+    fn of_file(path: &Path) -> Self {
+        Self::open(Start::Files(vec![ClipAddress { path: path.to_owned(), clip: None }]))
+    }
+
+    fn run(&mut self) {
+        self.0.run_steps(4);
+    }
+
+    fn window(&self) -> &Window {
+        self.0.state().as_ref().expect("the window is made in the first frame")
+    }
+
+    fn ask(&mut self, command: Command) {
+        self.0.state_mut().as_mut().expect("a window").ask(command);
+        self.run();
+    }
+
+    #[track_caller]
+    fn click(&mut self, label: &str) {
+        self.0.get_by_label(label).click();
+        self.run();
+    }
+
+    /// Clicks the first whose label begins so.
+    #[track_caller]
+    fn click_beginning(&mut self, beginning: &str) {
+        let node = self.0.get_all_by_label_contains(beginning).next().expect("a widget with that label");
+        node.click();
+        self.run();
+    }
+
+    fn states(&mut self) -> Vec<SnagState> {
+        let document = self.window().bench().work().expect("a clip").clone();
+        turnwright::app::view_models::snag_states(self.window().bench().snags(), &document)
+    }
+
+    fn passes(&self) -> usize {
+        self.window().bench().work().map_or(0, |work| work.passes.len())
+    }
+
+    fn messages(&self) -> String {
+        self.window().messages().collect::<Vec<_>>().join("\n")
+    }
+}
+
+/// A file of the demo in a folder of its own.
+fn demo_file(folder: &Path) -> PathBuf {
+    let scene = turnwright::demo::SCENES[0];
+    let path = folder.join(scene.clip_file);
+    disk::write(&path, scene.clip_bytes).unwrap();
+    path
+}
+
+#[test]
+fn the_demo_opens_with_its_snags_found() {
+    let bench = Bench::open(Start::Demo);
+    assert!(bench.window().bench().snags().len() >= 3, "{} snags", bench.window().bench().snags().len());
+    assert!(bench.window().bench().heat.is_some() && bench.window().bench().curves.is_some());
+    bench.0.get_by_label("Skeleton view");
+    bench.0.get_by_label("Turn map rows");
+    bench.0.get_by_label("Rotation curves chart");
+    bench.0.get_by_label("Scrub bar");
+}
+
+#[test]
+fn a_snag_is_chosen_mended_taken_back_and_undone() {
+    let mut bench = Bench::open(Start::Demo);
+    bench.ask(Command::ShowTime(turnwright::app::view_models::TimeWindow::whole(1.0)));
+    bench.click_beginning("Snag ");
+    let snag = bench.window().bench().chosen_snag().expect("a chosen snag").clone();
+    let session = &bench.window().bench().session;
+    assert_eq!(session.joint, Some(snag.joint));
+    assert!((session.playback.playhead_secs - snag.first_secs).abs() < 1e-9);
+    assert!(session.window.contains(snag.first_secs));
+    assert_eq!(bench.passes(), 0);
+
+    bench.click("Mend");
+    assert_eq!(bench.passes(), 1);
+    assert_eq!(bench.states().iter().filter(|state| **state == SnagState::Mended).count(), 1);
+    let (source, result) =
+        (bench.window().bench().source().unwrap().clone(), bench.window().bench().result().unwrap().clone());
+    assert!(!source.same_joint(&result, snag.joint), "the mend shows in the result");
+
+    bench.0.key_press_modifiers(egui::Modifiers::COMMAND, egui::Key::Z);
+    bench.run();
+    assert_eq!(bench.passes(), 0);
+    assert!(bench.states().iter().all(|state| *state == SnagState::Open));
+    bench.0.key_press_modifiers(egui::Modifiers::COMMAND | egui::Modifiers::SHIFT, egui::Key::Z);
+    bench.run();
+    assert_eq!(bench.passes(), 1);
+
+    bench.click("Take mend back");
+    assert_eq!(bench.passes(), 0);
+    bench.click("Leave");
+    assert!(bench.states().contains(&SnagState::Left));
+    bench.click("Look at again");
+    assert!(!bench.states().contains(&SnagState::Left));
+}
+
+#[test]
+fn all_of_a_kind_and_all_safe_ones_are_mended_at_one_stroke() {
+    let mut bench = Bench::open(Start::Demo);
+    bench.click_beginning("Snag ");
+    let kind = bench.window().bench().chosen_snag().unwrap().kind;
+    let of_kind = bench.window().bench().snags().iter().filter(|snag| snag.kind == kind).count();
+    bench.click("Mend all of this kind");
+    assert_eq!(bench.states().iter().filter(|state| **state == SnagState::Mended).count(), of_kind);
+    bench.click("Mend all safe");
+    let snags = bench.window().bench().snags().to_vec();
+    for (snag, state) in snags.iter().zip(bench.states()) {
+        assert!(!snag.safe || state == SnagState::Mended, "{}", snag.text);
+    }
+    let steps = bench.window().bench().project.as_ref().unwrap().history.steps().1;
+    assert!(steps <= 2, "each stroke is one step of the history, found {steps}");
+}
+
+#[test]
+fn passes_are_switched_and_removed_by_their_labels() {
+    let mut bench = Bench::open(Start::Demo);
+    bench.ask(Command::Do(Action::MendSafe));
+    let title = bench.window().bench().work().unwrap().passes[0].step.title();
+    bench.click(&format!("Pass {title}"));
+    assert!(!bench.window().bench().work().unwrap().passes[0].on);
+    let count = bench.passes();
+    bench.click(&format!("Remove: {title}"));
+    assert_eq!(bench.passes(), count - 1);
+}
+
+#[test]
+fn keys_step_and_the_scrub_bar_scrubs() {
+    let mut bench = Bench::open(Start::Demo);
+    bench.0.key_press(egui::Key::ArrowRight);
+    bench.run();
+    let grid = bench.window().bench().source().unwrap().grid.clone();
+    let frame = |bench: &Bench<'_>| grid.frame(bench.window().bench().session.playback.playhead_secs);
+    assert_eq!(frame(&bench), 1);
+    bench.0.key_press(egui::Key::End);
+    bench.run();
+    assert_eq!(frame(&bench), grid.count() - 1);
+    bench.click("Scrub bar");
+    let middle = frame(&bench);
+    let share = middle as f64 / (grid.count() - 1) as f64;
+    assert!((share - 0.5).abs() < 0.03, "a click in the middle of the bar goes to frame {middle}");
+    bench.click("Play");
+    assert!(bench.window().bench().session.playback.is_playing);
+    bench.0.run_steps(5);
+    assert!(frame(&bench) > middle);
+    bench.0.key_press(egui::Key::Space);
+    bench.run();
+    assert!(!bench.window().bench().session.playback.is_playing);
+}
+
+#[test]
+fn dragging_across_the_curves_and_the_map_scrubs() {
+    let mut bench = Bench::open(Start::Demo);
+    for label in ["Rotation curves chart", "Turn map rows"] {
+        let bounds = bench.0.get_by_label(label).rect();
+        let (from, to) = (bounds.center(), bounds.center() + egui::vec2(120.0, 0.0));
+        bench.0.hover_at(from);
+        bench.0.step();
+        bench.0.drag_at(from);
+        bench.0.step();
+        let start = bench.window().bench().session.playback.playhead_secs;
+        bench.0.hover_at(to);
+        bench.0.step();
+        bench.0.drop_at(to);
+        bench.run();
+        let moved = bench.window().bench().session.playback.playhead_secs - start;
+        assert!(moved > 0.0, "{label}: moved by {moved} s");
+    }
+}
+
+#[test]
+fn a_joint_chosen_in_the_tree_is_chosen_everywhere() {
+    let mut bench = Bench::open(Start::Demo);
+    let clip = bench.window().bench().source().unwrap().clone();
+    let joint = clip.skeleton.listed().nth(2).unwrap();
+    let name = clip.skeleton.label(joint).to_owned();
+    bench.click(&format!("Joint {name}"));
+    assert_eq!(bench.window().bench().session.joint, Some(joint));
+    assert_eq!(bench.window().bench().curves.as_ref().unwrap().parameters.0, joint);
+    let row = bench.0.get_by_label(&format!("Map row {name}"));
+    assert_eq!(row.accesskit_node().toggled(), Some(egui::accesskit::Toggled::True));
+}
+
+#[test]
+fn an_export_by_dialog_writes_the_corrected_clip_and_tells_what_changed() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = demo_file(folder.path());
+    let before = disk::read(&path).unwrap();
+    let mut bench = Bench::of_file(&path);
+    bench.ask(Command::Do(Action::MendSafe));
+    bench.ask(Command::Do(Action::Export));
+    bench.click("Export");
+    let written = folder.path().join("deckhand_mended.bvh");
+    assert!(written.is_file(), "{}", bench.messages());
+    assert!(bench.messages().contains("Exported") && bench.messages().contains("joint"), "{}", bench.messages());
+    assert_eq!(disk::read(&path).unwrap(), before, "the source is never changed");
+    let again = open(&written, &OpenOptions::default()).unwrap();
+    let result = bench.window().bench().result().unwrap();
+    let joint = bench.window().bench().snags().iter().find(|snag| snag.safe).unwrap().joint;
+    for frame in 0..result.grid.count() {
+        let time = result.grid.time(frame);
+        let apart =
+            result.rotation(joint).unwrap().at(time).turn_to(again.clips[0].rotation(joint).unwrap().at(time));
+        assert!(apart < 1e-5, "frame {frame} is {apart} rad off");
+    }
+}
+
+#[test]
+fn an_export_onto_the_source_is_refused_in_the_dialog() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = demo_file(folder.path());
+    let before = disk::read(&path).unwrap();
+    let mut bench = Bench::of_file(&path);
+    bench.ask(Command::Do(Action::Export));
+    bench.ask(Command::ExportTo(path.clone()));
+    assert_eq!(disk::read(&path).unwrap(), before);
+    assert!(bench.0.query_by_label_contains("expected another file than the input").is_some());
+}
+
+#[test]
+fn a_scene_is_saved_opened_again_and_tells_a_changed_source() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = demo_file(folder.path());
+    let mut bench = Bench::of_file(&path);
+    bench.ask(Command::Do(Action::MendSafe));
+    let passes = bench.window().bench().work().unwrap().passes.clone();
+    assert!(bench.window().title().starts_with('*'), "{}", bench.window().title());
+    let scene = folder.path().join("night.ron");
+    bench.ask(Command::SaveTo(scene.clone()));
+    assert!(!bench.window().title().starts_with('*'), "{}: {}", bench.window().title(), bench.messages());
+
+    let again = Bench::of_file(&scene);
+    assert_eq!(again.window().bench().work().unwrap().passes, passes);
+    assert_eq!(again.messages(), "");
+
+    let mut text = disk::read(&path).unwrap();
+    text.extend(b"\n");
+    disk::write(&path, &text).unwrap();
+    let mut changed = Bench::of_file(&scene);
+    assert!(changed.messages().contains("has changed since the scene was saved"), "{}", changed.messages());
+    changed.click("Find source again…");
+    changed.click("Use this file");
+    assert_eq!(changed.messages(), "");
+    assert_eq!(changed.window().bench().work().unwrap().passes, passes);
+
+    std::fs::remove_file(&path).unwrap();
+    let missing = Bench::of_file(&scene);
+    assert!(missing.messages().contains("deckhand.bvh"), "{}", missing.messages());
+    assert!(missing.window().bench().source().is_none());
+}
+
+#[test]
+fn unsaved_work_is_asked_about_before_closing_and_before_opening() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = demo_file(folder.path());
+    let mut bench = Bench::of_file(&path);
+    assert!(bench.0.state_mut().as_mut().unwrap().close_requested(), "nothing is lost yet");
+    bench.ask(Command::Do(Action::MendSafe));
+    assert!(!bench.0.state_mut().as_mut().unwrap().close_requested());
+    bench.run();
+    bench.click("Cancel");
+    assert!(!bench.window().should_close());
+    bench.ask(Command::OpenFiles(vec![path]));
+    assert!(bench.passes() > 0, "the question comes first");
+    bench.click("Discard");
+    assert_eq!(bench.passes(), 0);
+
+    bench.ask(Command::Do(Action::MendSafe));
+    bench.ask(Command::Do(Action::Quit));
+    bench.click("Save");
+    bench.click("Save");
+    assert!(folder.path().join("deckhand.ron").is_file(), "{}", bench.messages());
+    assert!(bench.window().should_close(), "after saving it goes on with what was asked for");
+}
+
+#[test]
+fn a_file_that_cannot_be_read_is_told_with_its_name_and_place() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("torn.bvh");
+    disk::write(&path, b"HIERARCHY\nROOT hip\n{\n  OFFSET 0 0\n").unwrap();
+    let mut bench = Bench::of_file(&path);
+    assert!(bench.messages().contains("torn.bvh") && bench.messages().contains("line"), "{}", bench.messages());
+    assert!(bench.window().bench().project.is_none());
+    bench.0.get_by_label("Open…");
+    bench.click("Dismiss message");
+    assert_eq!(bench.messages(), "");
+}
+
+#[test]
+fn a_file_with_several_clips_asks_which() {
+    let Some(path) = crate::support::shared("data/gltf/wolf.glb") else { return };
+    let mut bench = Bench::of_file(&path);
+    let document = bench.window().bench().project.as_ref().unwrap().document().clone();
+    assert!(document.works.len() > 5);
+    let name = document.works[3].name.clone();
+    bench.click(&format!("Clip {name}"));
+    assert_eq!(bench.window().bench().session.work, 3);
+    assert!(bench.window().bench().heat.is_some());
+}
+
+#[test]
+fn every_real_file_shows_without_a_message_that_stops() {
+    let files = [
+        "data/bvh/cmu_05_06_dance.bvh",
+        "data/bvh/rotation_first_root.bvh",
+        "data/gltf/AnimatedTriangle.gltf",
+        "data/gltf/Fox.glb",
+        "data/gltf/InterpolationTest.glb",
+    ];
+    for file in files {
+        let Some(path) = crate::support::shared(file) else { return };
+        let mut bench = Bench::of_size(
+            Start::Files(vec![ClipAddress { path: path.clone(), clip: None }]),
+            [1280.0, 720.0],
+        );
+        bench.ask(Command::CloseDialog);
+        assert!(bench.window().bench().source().is_some(), "{file}: {}", bench.messages());
+        bench.0.render().unwrap();
+        for action in [Action::SwingTwist, Action::FileNumbers, Action::TurnRate, Action::HeatChange] {
+            bench.ask(Command::Do(action));
+        }
+        bench.0.render().unwrap();
+    }
+}
+
+#[test]
+fn the_dance_has_its_hip_flips_and_they_are_mended() {
+    let Some(path) = crate::support::shared("data/bvh/cmu_05_06_dance.bvh") else { return };
+    let mut bench = Bench::of_file(&path);
+    let flips: Vec<_> =
+        bench.window().bench().snags().iter().filter(|snag| snag.kind == SnagKind::HalfTurn).cloned().collect();
+    assert!(!flips.is_empty(), "the hip flips of the dance are half turns");
+    let index = bench.window().bench().snags().iter().position(|snag| *snag == flips[0]).unwrap();
+    bench.ask(Command::ChooseSnag(index));
+    bench.ask(Command::Do(Action::MendKind));
+    let changed = bench.window().bench().findings().unwrap().evaluated.as_ref().unwrap().changes.clone();
+    assert!(changed.largest_deg > 90.0, "{changed:?}");
+}
+
+/// BVH text of 60 joints, 120 frames a second, with one angle that wraps.
+fn long_take(frames: usize) -> Vec<u8> {
+    use std::fmt::Write as _;
+    let mut text = String::from("HIERARCHY\nROOT j0\n{\nOFFSET 0 0 0\nCHANNELS 3 Zrotation Xrotation Yrotation\n");
+    for limb in 0..6 {
+        for joint in 0..10 - usize::from(limb == 5) {
+            let name = 1 + limb * 10 + joint;
+            let aside = f64::from(u8::try_from(limb).unwrap()) - 2.5;
+            let _ = write!(text, "JOINT j{name}\n{{\nOFFSET {} 9 {joint}\nCHANNELS 3 Zrotation Xrotation Yrotation\n", aside);
+        }
+        text.push_str("End Site\n{\nOFFSET 0 5 0\n}\n");
+        text.push_str(&"}\n".repeat(10 - usize::from(limb == 5)));
+    }
+    let _ = write!(text, "}}\nMOTION\nFrames: {frames}\nFrame Time: 0.00833333\n");
+    for frame in 0..frames {
+        let time = frame as f64 / 120.0;
+        for joint in 0..60 {
+            let phase = f64::from(joint);
+            let turn = if joint == 7 && (200..240).contains(&frame) { 360.0 } else { 0.0 };
+            let a = 40.0 * (time * (1.0 + 0.05 * phase) + phase).sin() + turn;
+            let b = 20.0 * (time * 2.3 + 0.7 * phase).sin();
+            let c = 30.0 * (time * 0.8 + phase).cos();
+            let _ = write!(text, "{a:.3} {b:.3} {c:.3} ");
+        }
+        text.push('\n');
+    }
+    text.into_bytes()
+}
+
+/// Middle time of a frame of the window while it is scrubbed, interface and painting, in milliseconds.
+fn frame_time(frames: usize) -> f64 {
+    use turnwright::app::paint::Headless;
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("long.bvh");
+    disk::write(&path, &long_take(frames)).unwrap();
+    let mut headless = Headless::new(egui::vec2(1440.0, 900.0), 1.0, 2);
+    let start = Start::Files(vec![ClipAddress { path, clip: None }]);
+    let mut window = Window::unthreaded(headless.context(), start);
+    headless.settle(&mut window);
+    assert_eq!(window.bench().snags().len(), 1, "the one angle that wraps");
+    let mut times: Vec<f64> = (0..40)
+        .map(|step| {
+            window.ask(Command::Scrub(f64::from(step) * 0.05));
+            let start = std::time::Instant::now();
+            headless.frame(&mut window, Vec::new());
+            let _ = headless.picture();
+            start.elapsed().as_secs_f64() * 1e3
+        })
+        .collect();
+    times.sort_by(f64::total_cmp);
+    times[times.len() / 2]
+}
+
+#[test]
+fn a_clip_of_five_minutes_is_as_fluid_as_one_of_five_seconds() {
+    let (short, long) = (frame_time(600), frame_time(36_000));
+    println!("a frame takes {short:.1} ms with 600 frames, {long:.1} ms with 36,000");
+    // The machine may be busy with other tests: what counts is that length does not matter.
+    assert!(long < 2.5 * short + 5.0, "{short} ms and {long} ms");
+}
