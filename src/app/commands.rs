@@ -244,7 +244,14 @@ pub const TABLE: &[Entry] = &{
             Some(ctrl(Key::O)),
             ALWAYS,
         ),
-        entry(F, A::OpenPath, "Open path…", "Type the path of a clip or scene", Some(ctrl_shift(Key::O)), ALWAYS),
+        entry(
+            F,
+            A::OpenPath,
+            "Open path…",
+            "Type the path of a clip or scene",
+            Some(ctrl_shift(Key::O)),
+            ALWAYS,
+        ),
         entry(F, A::OpenDemo, "Open the demo", "The night ferry: a clip with planted snags", None, ALWAYS),
         entry(
             F,
@@ -282,9 +289,18 @@ pub const TABLE: &[Entry] = &{
         ),
         entry(F, A::Quit, "Quit", "Close the window", Some(ctrl(Key::Q)), ALWAYS).group(),
         entry(E, A::Undo, "Undo", "Take back the last change", Some(ctrl(Key::Z)), |now| now.undo.is_some()),
-        entry(E, A::Redo, "Redo", "Bring back what was undone", Some(ctrl_shift(Key::Z)), |now| now.redo.is_some()),
-        entry(E, A::History, "History…", "All changes since the file was opened", Some(ctrl(Key::H)), DOCUMENT)
-            .group(),
+        entry(E, A::Redo, "Redo", "Bring back what was undone", Some(ctrl_shift(Key::Z)), |now| {
+            now.redo.is_some()
+        }),
+        entry(
+            E,
+            A::History,
+            "History…",
+            "All changes since the file was opened",
+            Some(ctrl(Key::H)),
+            DOCUMENT,
+        )
+        .group(),
         entry(V, A::Fit, "Fit figure", "Bring the whole figure into view", Some(ctrl(Key::Num7)), CLIP),
         entry(
             V,
@@ -304,7 +320,8 @@ pub const TABLE: &[Entry] = &{
             CLIP,
         )
         .switch(|now| now.is_parallel),
-        entry(V, A::LookXy, "Look at plane xy", "Straight view of plane xy", Some(ctrl(Key::Num1)), CLIP).group(),
+        entry(V, A::LookXy, "Look at plane xy", "Straight view of plane xy", Some(ctrl(Key::Num1)), CLIP)
+            .group(),
         entry(
             V,
             A::LookZx,
@@ -322,7 +339,14 @@ pub const TABLE: &[Entry] = &{
             Some(ctrl(Key::Num4)),
             CLIP,
         ),
-        entry(V, A::LookZxBack, "Look at zx from below", "The other side of plane zx", Some(ctrl(Key::Num5)), CLIP),
+        entry(
+            V,
+            A::LookZxBack,
+            "Look at zx from below",
+            "The other side of plane zx",
+            Some(ctrl(Key::Num5)),
+            CLIP,
+        ),
         entry(
             V,
             A::LookYzBack,
@@ -359,11 +383,25 @@ pub const TABLE: &[Entry] = &{
             CLIP,
         )
         .switch(|now| matches!(now.curve_view, Some(CurveView::FileNumbers))),
-        entry(V, A::TurnRate, "Curve of turn rate", CurveView::TurnRate.explanation(), Some(alt(Key::Num4)), CLIP)
-            .switch(|now| matches!(now.curve_view, Some(CurveView::TurnRate))),
-        entry(V, A::HeatTurnRate, "Map turn rate", "Colour = how fast a joint turns", Some(alt(Key::Num5)), CLIP)
-            .switch(|now| matches!(now.heat_kind, Some(HeatKind::TurnRate)))
-            .group(),
+        entry(
+            V,
+            A::TurnRate,
+            "Curve of turn rate",
+            CurveView::TurnRate.explanation(),
+            Some(alt(Key::Num4)),
+            CLIP,
+        )
+        .switch(|now| matches!(now.curve_view, Some(CurveView::TurnRate))),
+        entry(
+            V,
+            A::HeatTurnRate,
+            "Map turn rate",
+            "Colour = how fast a joint turns",
+            Some(alt(Key::Num5)),
+            CLIP,
+        )
+        .switch(|now| matches!(now.heat_kind, Some(HeatKind::TurnRate)))
+        .group(),
         entry(
             V,
             A::HeatChange,
@@ -382,8 +420,15 @@ pub const TABLE: &[Entry] = &{
             CLIP,
         )
         .switch(|now| now.worst_first),
-        entry(V, A::WholeTime, "Show all time", "The whole clip from left to right", Some(alt(Key::Num0)), CLIP)
-            .group(),
+        entry(
+            V,
+            A::WholeTime,
+            "Show all time",
+            "The whole clip from left to right",
+            Some(alt(Key::Num0)),
+            CLIP,
+        )
+        .group(),
         entry(
             V,
             A::NearerTime,
@@ -419,8 +464,15 @@ pub const TABLE: &[Entry] = &{
             CLIP,
         )
         .switch(|now| now.shows_source_alone),
-        entry(V, A::PreviousJoint, "Previous joint", "Choose the joint above", Some(ctrl(Key::ArrowUp)), CLIP)
-            .group(),
+        entry(
+            V,
+            A::PreviousJoint,
+            "Previous joint",
+            "Choose the joint above",
+            Some(ctrl(Key::ArrowUp)),
+            CLIP,
+        )
+        .group(),
         entry(V, A::NextJoint, "Next joint", "Choose the joint below", Some(ctrl(Key::ArrowDown)), CLIP),
         entry(V, A::Light, "Light window", "Dark on light", Some(ctrl(Key::D)), ALWAYS)
             .switch(|now| now.is_light)
@@ -429,7 +481,8 @@ pub const TABLE: &[Entry] = &{
         entry(S, A::StopFinding, "Stop finding", "Stop looking for snags", Some(shift(Key::F5)), |now| {
             now.is_finding
         }),
-        entry(S, A::PreviousSnag, "Previous snag", "Jump to the snag above", Some(shift(Key::F8)), SNAGS).group(),
+        entry(S, A::PreviousSnag, "Previous snag", "Jump to the snag above", Some(shift(Key::F8)), SNAGS)
+            .group(),
         entry(S, A::NextSnag, "Next snag", "Jump to the snag below", Some(plain(Key::F8)), SNAGS),
         entry(S, A::Mend, "Mend", "Mend the chosen snag", Some(ctrl(Key::Enter)), |now| {
             now.has_snag && !now.snag_is_mended
@@ -459,9 +512,17 @@ pub const TABLE: &[Entry] = &{
             Some(ctrl(Key::Backspace)),
             |now| now.snag_is_mended,
         ),
-        entry(S, A::Leave, "Leave", "The chosen snag is meant, or not worth it", Some(ctrl(Key::Delete)), SNAG)
-            .switch(|now| now.snag_is_left),
-        entry(P, A::Play, "Play", "Play or pause", Some(plain(Key::Space)), CLIP).switch(|now| now.is_playing),
+        entry(
+            S,
+            A::Leave,
+            "Leave",
+            "The chosen snag is meant, or not worth it",
+            Some(ctrl(Key::Delete)),
+            SNAG,
+        )
+        .switch(|now| now.snag_is_left),
+        entry(P, A::Play, "Play", "Play or pause", Some(plain(Key::Space)), CLIP)
+            .switch(|now| now.is_playing),
         entry(P, A::StepBack, "Frame back", "One frame back", Some(plain(Key::ArrowLeft)), CLIP).group(),
         entry(P, A::StepForward, "Frame forward", "One frame forward", Some(plain(Key::ArrowRight)), CLIP),
         entry(
@@ -472,7 +533,14 @@ pub const TABLE: &[Entry] = &{
             Some(ctrl(Key::ArrowLeft)),
             JOINT,
         ),
-        entry(P, A::NextKey, "Next key", "To the chosen joint's key after", Some(ctrl(Key::ArrowRight)), JOINT),
+        entry(
+            P,
+            A::NextKey,
+            "Next key",
+            "To the chosen joint's key after",
+            Some(ctrl(Key::ArrowRight)),
+            JOINT,
+        ),
         entry(P, A::First, "To the start", "To the first frame", Some(plain(Key::Home)), CLIP),
         entry(P, A::Last, "To the end", "To the last frame", Some(plain(Key::End)), CLIP),
         entry(P, A::Loop, "Loop", "Start over at the end", Some(ctrl(Key::L)), CLIP)
@@ -486,7 +554,14 @@ pub const TABLE: &[Entry] = &{
             Some(ctrl(Key::OpenBracket)),
             CLIP,
         ),
-        entry(P, A::LoopTo, "Loop to here", "The loop ends at the playhead", Some(ctrl(Key::CloseBracket)), CLIP),
+        entry(
+            P,
+            A::LoopTo,
+            "Loop to here",
+            "The loop ends at the playhead",
+            Some(ctrl(Key::CloseBracket)),
+            CLIP,
+        ),
         entry(P, A::LoopAll, "Loop whole clip", "Forget the loop range", Some(ctrl(Key::Backslash)), |now| {
             now.has_loop_range
         }),

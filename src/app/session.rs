@@ -160,7 +160,12 @@ impl Session {
 
 /// The first listed joint that turns, so that curves and numbers have something to show at once.
 fn first_moving_joint(clip: &Clip) -> Option<usize> {
-    let moves = |&joint: &usize| clip.rotation(joint).is_some_and(|track| track.times.len() > 1);
+    let moves = |&joint: &usize| {
+        clip.rotation(joint).is_some_and(|track| {
+            let first = track.keys.first().copied().unwrap_or_default();
+            track.keys.iter().any(|key| key.is_finite() && first.turn_to(*key) > 1e-3)
+        })
+    };
     clip.skeleton.listed().find(moves).or_else(|| clip.skeleton.listed().next())
 }
 

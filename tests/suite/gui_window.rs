@@ -214,7 +214,8 @@ fn a_joint_chosen_in_the_tree_is_chosen_everywhere() {
     bench.click(&format!("Joint {name}"));
     assert_eq!(bench.window().bench().session.joint, Some(joint));
     assert_eq!(bench.window().bench().curves.as_ref().unwrap().parameters.0, joint);
-    let row = bench.0.get_by_label(&format!("Map row {name}"));
+    let label = format!("Map row {name}");
+    let row = bench.0.get_by_label(&label);
     assert_eq!(row.accesskit_node().toggled(), Some(egui::accesskit::Toggled::True));
 }
 
@@ -229,15 +230,22 @@ fn an_export_by_dialog_writes_the_corrected_clip_and_tells_what_changed() {
     bench.click("Export");
     let written = folder.path().join("deckhand_mended.bvh");
     assert!(written.is_file(), "{}", bench.messages());
-    assert!(bench.messages().contains("Exported") && bench.messages().contains("joint"), "{}", bench.messages());
+    assert!(
+        bench.messages().contains("Exported") && bench.messages().contains("joint"),
+        "{}",
+        bench.messages()
+    );
     assert_eq!(disk::read(&path).unwrap(), before, "the source is never changed");
     let again = open(&written, &OpenOptions::default()).unwrap();
     let result = bench.window().bench().result().unwrap();
     let joint = bench.window().bench().snags().iter().find(|snag| snag.safe).unwrap().joint;
     for frame in 0..result.grid.count() {
         let time = result.grid.time(frame);
-        let apart =
-            result.rotation(joint).unwrap().at(time).turn_to(again.clips[0].rotation(joint).unwrap().at(time));
+        let apart = result
+            .rotation(joint)
+            .unwrap()
+            .at(time)
+            .turn_to(again.clips[0].rotation(joint).unwrap().at(time));
         assert!(apart < 1e-5, "frame {frame} is {apart} rad off");
     }
 }
@@ -316,7 +324,11 @@ fn a_file_that_cannot_be_read_is_told_with_its_name_and_place() {
     let path = folder.path().join("torn.bvh");
     disk::write(&path, b"HIERARCHY\nROOT hip\n{\n  OFFSET 0 0\n").unwrap();
     let mut bench = Bench::of_file(&path);
-    assert!(bench.messages().contains("torn.bvh") && bench.messages().contains("line"), "{}", bench.messages());
+    assert!(
+        bench.messages().contains("torn.bvh") && bench.messages().contains("line"),
+        "{}",
+        bench.messages()
+    );
     assert!(bench.window().bench().project.is_none());
     bench.0.get_by_label("Open…");
     bench.click("Dismiss message");
@@ -364,8 +376,14 @@ fn every_real_file_shows_without_a_message_that_stops() {
 fn the_dance_has_its_hip_flips_and_they_are_mended() {
     let Some(path) = crate::support::shared("data/bvh/cmu_05_06_dance.bvh") else { return };
     let mut bench = Bench::of_file(&path);
-    let flips: Vec<_> =
-        bench.window().bench().snags().iter().filter(|snag| snag.kind == SnagKind::HalfTurn).cloned().collect();
+    let flips: Vec<_> = bench
+        .window()
+        .bench()
+        .snags()
+        .iter()
+        .filter(|snag| snag.kind == SnagKind::HalfTurn)
+        .cloned()
+        .collect();
     assert!(!flips.is_empty(), "the hip flips of the dance are half turns");
     let index = bench.window().bench().snags().iter().position(|snag| *snag == flips[0]).unwrap();
     bench.ask(Command::ChooseSnag(index));
@@ -377,12 +395,17 @@ fn the_dance_has_its_hip_flips_and_they_are_mended() {
 /// BVH text of 60 joints, 120 frames a second, with one angle that wraps.
 fn long_take(frames: usize) -> Vec<u8> {
     use std::fmt::Write as _;
-    let mut text = String::from("HIERARCHY\nROOT j0\n{\nOFFSET 0 0 0\nCHANNELS 3 Zrotation Xrotation Yrotation\n");
+    let mut text =
+        String::from("HIERARCHY\nROOT j0\n{\nOFFSET 0 0 0\nCHANNELS 3 Zrotation Xrotation Yrotation\n");
     for limb in 0..6 {
         for joint in 0..10 - usize::from(limb == 5) {
             let name = 1 + limb * 10 + joint;
             let aside = f64::from(u8::try_from(limb).unwrap()) - 2.5;
-            let _ = write!(text, "JOINT j{name}\n{{\nOFFSET {} 9 {joint}\nCHANNELS 3 Zrotation Xrotation Yrotation\n", aside);
+            let _ = write!(
+                text,
+                "JOINT j{name}\n{{\nOFFSET {} 9 {joint}\nCHANNELS 3 Zrotation Xrotation Yrotation\n",
+                aside
+            );
         }
         text.push_str("End Site\n{\nOFFSET 0 5 0\n}\n");
         text.push_str(&"}\n".repeat(10 - usize::from(limb == 5)));

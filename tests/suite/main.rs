@@ -14,6 +14,7 @@
 //! | `golden` | comparing a picture with the one a person accepted |
 //! | `layers` | layers point down only, and the window's libraries stay in `app` |
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
+//! | `gui_display` | the real program in a real window under Xvfb, driven by mouse and keyboard |
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
 //! | `gui_start` | the real program where no window can open |
@@ -38,6 +39,8 @@ mod gltf_forms;
 mod gltf_write;
 
 mod golden;
+#[cfg(feature = "gui-tests")]
+mod gui_display;
 #[cfg(feature = "gui-tests")]
 mod gui_paint;
 #[cfg(feature = "gui-tests")]

@@ -116,6 +116,11 @@ impl ValueAxis {
         // Noise on a joint that stands still must not look like motion.
         let least = if set.unit.is_empty() { 0.05 } else { 6.0 };
         let span = (high - low).max(least);
+        if set.unit == "°/s" {
+            // A rate is never below zero: its axis stands on the ground.
+            let top = high.max(least);
+            return Self { low: -0.05 * top, high: 1.1 * top, rows };
+        }
         let middle = f64::midpoint(low, high);
         Self { low: middle - span * 0.56, high: middle + span * 0.56, rows }
     }

@@ -37,7 +37,7 @@ fn entry_ui(ui: &mut Ui, entry: &Entry, now: &Situation, look: &Look, out: &mut 
         _ => entry.label.to_owned(),
     };
     // Room for the mark of a switch, so that all words begin at one edge.
-    let mut button = Button::new(format!("      {label}"));
+    let mut button = Button::new(format!("       {label}"));
     if let Some(shortcut) = entry.shortcut {
         button = button.shortcut_text(ui.ctx().format_shortcut(&shortcut));
     }
@@ -50,7 +50,7 @@ fn entry_ui(ui: &mut Ui, entry: &Entry, now: &Situation, look: &Look, out: &mut 
     });
     if is_on {
         let mark = egui::Rect::from_center_size(
-            response.rect.left_center() + egui::vec2(16.0, 0.0),
+            response.rect.left_center() + egui::vec2(13.0, 0.0),
             egui::vec2(13.0, 13.0),
         );
         paint_icon(ui.painter(), mark, Icon::Check, look.text);
