@@ -5,6 +5,8 @@ use std::path::PathBuf;
 use clap::{Args, Parser, Subcommand, ValueEnum};
 
 use crate::clip::PathKind;
+use crate::exchange::OpenOptions;
+use crate::exchange::csv::{CsvOptions, NamedColumns, TimeUnit};
 use crate::snag::SnagKind;
 
 /// Finds, mends and proves rotation faults in animation clips.
@@ -60,6 +62,8 @@ pub(super) struct SnagsArgs {
     /// Look for these kinds only
     #[arg(long, value_name = "K,…", value_delimiter = ',')]
     pub(super) kinds: Option<Vec<SnagKind>>,
+    #[command(flatten)]
+    pub(super) csv: CsvArgs,
 }
 
 /// Write clips with their faults mended; all else keeps its numbers
@@ -89,6 +93,8 @@ pub(super) struct MendArgs {
     /// Allow an input to be replaced
     #[arg(long)]
     pub(super) force: bool,
+    #[command(flatten)]
+    pub(super) csv: CsvArgs,
 }
 
 /// Write a clip in another format, at another rate, or a part of it
@@ -112,6 +118,8 @@ pub(super) struct ConvertArgs {
     /// Allow the input to be replaced
     #[arg(long)]
     pub(super) force: bool,
+    #[command(flatten)]
+    pub(super) csv: CsvArgs,
 }
 
 /// Print where every joint stands and turns at some times
@@ -136,6 +144,27 @@ pub(super) struct SampleArgs {
     /// Form of the output
     #[arg(long, value_enum, default_value_t = SampleFormat::Json)]
     pub(super) format: SampleFormat,
+    #[command(flatten)]
+    pub(super) csv: CsvArgs,
+}
+
+/// What a CSV file of another make does not say itself.
+#[derive(Clone, Debug, Default, Args)]
+pub(super) struct CsvArgs {
+    /// Columns of a CSV file with other headers than ours: time and the four numbers of one joint's quaternion
+    #[arg(long, value_name = "time=…,w=…,x=…,y=…,z=…")]
+    pub(super) columns: Option<NamedColumns>,
+    /// Unit of the time column of a CSV file: s, ms or us
+    #[arg(long, value_name = "UNIT")]
+    pub(super) time_unit: Option<TimeUnit>,
+}
+
+impl CsvArgs {
+    /// For opening files.
+    pub(super) fn open_options(&self) -> OpenOptions {
+        let csv = CsvOptions { columns: self.columns.clone(), time_unit: self.time_unit, hierarchy: None };
+        OpenOptions { csv }
+    }
 }
 
 /// A path between keys, as typed.
@@ -190,6 +219,8 @@ pub(super) struct ProofArgs {
     /// Allow an input to be replaced
     #[arg(long)]
     pub(super) force: bool,
+    #[command(flatten)]
+    pub(super) csv: CsvArgs,
 }
 
 /// Draw the skeleton at some times into a PNG file
@@ -201,6 +232,9 @@ pub(super) struct PictureArgs {
     /// PNG file to write
     #[arg(short, long, value_name = "PNG")]
     pub(super) output: PathBuf,
+    /// Draw the window with the clip open in it, its playhead at the first of the times
+    #[arg(long)]
+    pub(super) window: bool,
     /// At these seconds; eight spread over the clip if not given
     #[arg(long, value_name = "T,…", value_delimiter = ',', allow_negative_numbers = true)]
     pub(super) at: Option<Vec<f64>>,
@@ -210,6 +244,8 @@ pub(super) struct PictureArgs {
     /// Allow an input to be replaced
     #[arg(long)]
     pub(super) force: bool,
+    #[command(flatten)]
+    pub(super) csv: CsvArgs,
 }
 
 /// Smallest and largest side of a picture, in pixels.

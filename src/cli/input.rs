@@ -45,13 +45,16 @@ impl Input {
 /// Opens what `text` names: a clip file gives one input, a scene one for each of its sources that has work.
 ///
 /// What was odd but no error is told on stderr.
-pub(super) fn open(text: &str, output: &mut Output) -> Result<Vec<Input>, CliError> {
+pub(super) fn open(text: &str, options: &OpenOptions, output: &mut Output) -> Result<Vec<Input>, CliError> {
     let address = ClipAddress::parse(text);
     if address.path.is_dir() {
         return Err(exchange::OpenError::Disk(disk::DiskError::Folder(address.path)).into());
     }
-    let inputs =
-        if is_scene(&address.path) { open_scene(&address, output)? } else { vec![open_clips(&address)?] };
+    let inputs = if is_scene(&address.path) {
+        open_scene(&address, options, output)?
+    } else {
+        vec![open_clips(&address, options)?]
+    };
     for input in &inputs {
         output.notes(&input.source.path, &input.source.notes);
     }
@@ -59,10 +62,18 @@ pub(super) fn open(text: &str, output: &mut Output) -> Result<Vec<Input>, CliErr
 }
 
 /// As [`open`], where one clip is wanted: the first that is meant.
-pub(super) fn open_one(text: &str, output: &mut Output) -> Result<Input, CliError> {
-    let mut inputs = open(text, output)?;
+pub(super) fn open_one(text: &str, options: &OpenOptions, output: &mut Output) -> Result<Input, CliError> {
+    let mut inputs = open(text, options, output)?;
     // `open` gives at least one.
     Ok(inputs.swap_remove(0))
+}
+
+/// Opens a clip file that this program has just written; its name is taken as it is.
+pub(super) fn read_back(path: &Path, output: &mut Output) -> Result<Input, CliError> {
+    let address = ClipAddress { path: path.to_owned(), clip: None };
+    let input = open_clips(&address, &OpenOptions::default())?;
+    output.notes(path, &input.source.notes);
+    Ok(input)
 }
 
 /// Whether a path names a scene.
@@ -70,8 +81,8 @@ pub(super) fn is_scene(path: &Path) -> bool {
     path.extension().is_some_and(|extension| extension.eq_ignore_ascii_case("ron"))
 }
 
-fn open_clips(address: &ClipAddress) -> Result<Input, CliError> {
-    let source = exchange::open(&address.path, &OpenOptions::default())?;
+fn open_clips(address: &ClipAddress, options: &OpenOptions) -> Result<Input, CliError> {
+    let source = exchange::open(&address.path, options)?;
     let count = source.clips.len();
     if count == 0 {
         return Err(CliError::NoClip { path: address.path.clone() });
@@ -99,11 +110,15 @@ fn open_clips(address: &ClipAddress) -> Result<Input, CliError> {
     })
 }
 
-fn open_scene(address: &ClipAddress, output: &mut Output) -> Result<Vec<Input>, CliError> {
+fn open_scene(
+    address: &ClipAddress,
+    options: &OpenOptions,
+    output: &mut Output,
+) -> Result<Vec<Input>, CliError> {
     let mut scene = ron::read(&address.path)?;
     let mut inputs = Vec::new();
     for (index, reference) in scene.document.sources.clone().into_iter().enumerate() {
-        let source = exchange::open(&reference.path, &OpenOptions::default())?;
+        let source = exchange::open(&reference.path, options)?;
         if source.sha256 != reference.sha256 {
             output.note(&reference.path, "has changed since the scene was saved; its passes may not fit");
         }

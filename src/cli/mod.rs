@@ -16,17 +16,34 @@ use std::process::ExitCode;
 
 use clap::Parser;
 
+use crate::raster::Image;
+
 use args::{Arguments, Command};
 pub use error::CliError;
 use output::Output;
 
 /// What is left to do after the command line was read.
-#[derive(Debug, PartialEq, Eq)]
+#[derive(Debug, PartialEq)]
 pub enum Outcome {
     /// Nothing: the process ends with this code.
     Done(u8),
     /// Open the window on these files; without any, on the demo scene.
     OpenWindow(Vec<PathBuf>),
+    /// Draw the window, and give the picture to [`write_window_picture`].
+    DrawWindow(WindowPicture),
+}
+
+/// A picture of the window that is wanted.
+#[derive(Clone, Debug, PartialEq)]
+pub struct WindowPicture {
+    /// The clip or scene that is open in it, as the user named it.
+    pub clip: String,
+    /// Where the playhead is to stand, seconds.
+    pub at_secs: Option<f64>,
+    /// Width and height in pixels.
+    pub size: [usize; 2],
+    /// The PNG file to write.
+    pub output: PathBuf,
 }
 
 /// All was well, or `mend` mended.
@@ -52,6 +69,14 @@ pub fn run(arguments: impl IntoIterator<Item = OsString>) -> Outcome {
         Some(Command::Convert(own)) => commands::convert::run(&own, &mut output),
         Some(Command::Sample(own)) => commands::sample::run(&own, &mut output),
         Some(Command::Proof(own)) => commands::proof::run(&own, &mut output),
+        Some(Command::Picture(own)) if own.window => match commands::picture::checked(&own, &mut output) {
+            Ok(_) => {
+                let at_secs = own.at.and_then(|at| at.first().copied());
+                let picture = WindowPicture { clip: own.clip, at_secs, size: own.size, output: own.output };
+                return Outcome::DrawWindow(picture);
+            }
+            Err(error) => Err(error),
+        },
         Some(Command::Picture(own)) => commands::picture::run(&own, &mut output),
     };
     let done = done.and_then(|code| output.flush().map(|()| code).map_err(CliError::Output));
@@ -66,10 +91,22 @@ pub fn run(arguments: impl IntoIterator<Item = OsString>) -> Outcome {
     })
 }
 
-/// Says in one line on stderr why the window did not open, and gives the code to end with.
+/// Says in one line on stderr why the window did not open or could not be drawn, and gives the code to end with.
 pub fn window_failed(reason: &dyn std::fmt::Display) -> ExitCode {
     Output::of_process().error(reason);
     ExitCode::from(FAILED)
+}
+
+/// Writes a picture of the window to the file that was named, and gives the code to end with.
+pub fn write_window_picture(image: &Image, wanted: &WindowPicture) -> ExitCode {
+    let mut output = Output::of_process();
+    match commands::picture::write_image(image, &wanted.output, &mut output) {
+        Ok(()) => ExitCode::from(DONE),
+        Err(error) => {
+            output.error(&error);
+            ExitCode::from(FAILED)
+        }
+    }
 }
 
 /// Files to open have to exist before a window is opened for them.

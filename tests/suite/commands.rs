@@ -640,3 +640,37 @@ fn a_reader_that_stops_reading_is_no_failure() {
     assert_eq!(ended.status.code(), Some(0), "{stderr}");
     assert!(!stderr.contains("panicked"), "{stderr}");
 }
+
+#[test]
+fn columns_of_another_make_can_be_named() {
+    let bench = Bench::new();
+    // A quarter turn about y over 500 ms.
+    bench.write(
+        "sensor.csv",
+        b"stamp,real,i,j,k\n0,1,0,0,0\n250,0.92388,0,0.38268,0\n500,0.70711,0,0.70711,0\n",
+    );
+    let unnamed = bench.run("sample sensor.csv --at 0.5").expect(2);
+    assert!(unnamed.stderr.contains("sensor.csv: line 1"), "{}", unnamed.stderr);
+    let named = "--columns time=stamp,w=real,x=i,y=j,z=k --time-unit ms";
+    let run = bench.run(&format!("sample sensor.csv --at 0.5 {named}")).expect(0);
+    let sample: Value = serde_json::from_str(&run.stdout).unwrap();
+    let (_, joint) = sample["joints"].as_object().unwrap().iter().next().unwrap();
+    let half = std::f64::consts::FRAC_1_SQRT_2;
+    assert_close!(numbers::<4>(&joint["rotation"][0]), [0.0, half, 0.0, half], 1e-5);
+    let wrong = bench.run("snags sensor.csv --time-unit hours").expect(2);
+    assert!(wrong.stderr.contains("expected s, ms or us, found `hours`"), "{}", wrong.stderr);
+}
+
+#[cfg(feature = "gui")]
+#[test]
+fn the_window_is_drawn_without_a_display() {
+    let bench = Bench::new();
+    bench.run("picture deckhand.ron --window -o window.png --size 1200x800 --at 3.5").expect(0);
+    let bytes = bench.read("window.png");
+    let mut reader = png::Decoder::new(std::io::Cursor::new(&bytes)).read_info().unwrap();
+    let mut pixels = vec![0; reader.output_buffer_size().unwrap()];
+    let frame = reader.next_frame(&mut pixels).unwrap();
+    assert_eq!((frame.width, frame.height), (1200, 800));
+    let colors: BTreeSet<&[u8]> = pixels[..frame.buffer_size()].chunks(3).collect();
+    assert!(colors.len() > 500, "{} colours", colors.len());
+}

@@ -19,7 +19,7 @@ pub(crate) fn run(args: &ConvertArgs, output: &mut Output) -> Result<u8, CliErro
         return Err(argument("--rate", "frames per second above 0", rate, "name a rate such as 30"));
     }
     let format = Format::of(&args.output)?;
-    let input = input::open_one(&args.clip, output)?;
+    let input = input::open_one(&args.clip, &args.csv.open_options(), output)?;
     let guard = Guard { inputs: input.files(), force: args.force };
     guard.check(&args.output)?;
     let all = input.source.format.holds_many() && format.holds_many() && !input.is_named;

@@ -14,6 +14,7 @@ use crate::clip::Clip;
 use crate::demo::{DemoScene, SCENES};
 use crate::exchange::{self, Guard, disk};
 use crate::proof::Sheet;
+use crate::raster::spread_times;
 
 use super::mend::{Choice, mend_clip};
 use super::picture;
@@ -42,7 +43,7 @@ fn do_scene(scene: &DemoScene, folder: &Path, output: &mut Output) -> Result<(),
     disk::write(&clip_path, scene.clip_bytes)?;
     disk::write(&folder.join(scene.scene_file), scene.scene_bytes)?;
 
-    let mut input = input::open_one(&clip_path.to_string_lossy(), output)?;
+    let mut input = input::read_back(&clip_path, output)?;
     let before = input.clip().clone();
     let (mended, snags, mends) = mend_clip(&clip_path, &before, &Choice::safe())?;
     let label = input.source.clip_label(0);
@@ -70,7 +71,7 @@ fn do_scene(scene: &DemoScene, folder: &Path, output: &mut Output) -> Result<(),
         output.notes(&written, &told.notes);
         output.say(&format!("wrote {}", written.display()));
     }
-    let after = input::open_one(&written.to_string_lossy(), output)?;
+    let after = input::read_back(&written, output)?;
     let sheet = sheet_of(&input, &after, &[(0, 0)], &written)?;
     for (extension, format) in [("html", SheetFormat::Html), ("json", SheetFormat::Json)] {
         write(&sheet, &folder.join(format!("{}-proof.{extension}", scene.name)), format, output)?;
@@ -85,14 +86,18 @@ fn moments(sheet: &Sheet, clip: &Arc<Clip>) -> Vec<f64> {
     let mut joints: Vec<_> = sheet.clips.iter().flat_map(|clip| &clip.measurement.joints).collect();
     joints.sort_by(|a, b| b.change.value.total_cmp(&a.change.value));
     let changed = joints.iter().filter(|joint| joint.change.value > 0.01).map(|joint| joint.change.at_secs);
-    let spread = picture::spread(clip, MOMENTS + 1);
     let mut chosen: Vec<f64> = Vec::with_capacity(MOMENTS);
-    for secs in changed.chain(spread) {
-        let is_new = chosen.iter().all(|other| (other - secs).abs() >= LEAST_GAP_SECS);
-        if is_new && chosen.len() < MOMENTS {
-            chosen.push(secs);
+    let mut choose = |times: &mut dyn Iterator<Item = f64>, most: usize| {
+        for secs in times {
+            let is_new = chosen.iter().all(|other| (other - secs).abs() >= LEAST_GAP_SECS);
+            if is_new && chosen.len() < most {
+                chosen.push(secs);
+            }
         }
-    }
+        chosen.len()
+    };
+    let taken = choose(&mut changed.into_iter(), MOMENTS / 2);
+    choose(&mut spread_times(clip, MOMENTS - taken).into_iter(), MOMENTS);
     chosen.sort_by(f64::total_cmp);
     chosen
 }

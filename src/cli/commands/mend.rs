@@ -12,7 +12,7 @@ use crate::cli::output::{Output, json, text};
 use crate::cli::progress::ProgressLine;
 use crate::cli::targets;
 use crate::clip::Clip;
-use crate::exchange::{self, Guard};
+use crate::exchange::{self, Format, Guard};
 use crate::mend::{self, SurveyOptions};
 use crate::proof;
 use crate::snag::{Remedy, Snag, SnagKind};
@@ -28,10 +28,11 @@ pub(crate) fn run(args: &MendArgs, output: &mut Output) -> Result<u8, CliError> 
         has_named_kinds: args.kinds.is_some(),
     };
 
+    let options = args.csv.open_options();
     let mut inputs = Vec::new();
     let mut failed = 0;
     for text in &args.clips {
-        match input::open(text, output) {
+        match input::open(text, &options, output) {
             Ok(opened) => inputs.extend(opened),
             Err(error) if args.clips.len() == 1 => return Err(error),
             Err(error) => {
@@ -53,12 +54,16 @@ pub(crate) fn run(args: &MendArgs, output: &mut Output) -> Result<u8, CliError> 
         let written = exchange::write(&input.source, &mended.results, of_many, target, &guard)?;
         // Told when it is true.
         mended.report(input, args.json, output)?;
+        if input.chosen.len() > 1 && !Format::of(target).is_ok_and(Format::holds_many) {
+            let label = input.source.clip_label(input.first());
+            output.note(target, &format!("holds one clip: the first of {}, {label}", input.chosen.len()));
+        }
         output.notes(target, &written.notes);
         output.say(&format!("wrote {}", target.display()));
         if let (Some(sheet), Some(format)) = (&args.proof, sheet_format) {
             let path = targets::beside(sheet, target, inputs.len());
             guard.check(&path)?;
-            write_sheet(input, &input.chosen, target, &path, format, output)?;
+            write_sheet(input, target, &path, format, output)?;
         }
     }
     if failed > 0 {

@@ -40,8 +40,8 @@ impl SheetFormat {
 /// Compares the first or named clip of each file.
 pub(crate) fn run(args: &ProofArgs, output: &mut Output) -> Result<u8, CliError> {
     let format = SheetFormat::of(&args.output)?;
-    let before = input::open_one(&args.before, output)?;
-    let after = input::open_one(&args.after, output)?;
+    let before = input::open_one(&args.before, &args.csv.open_options(), output)?;
+    let after = input::open_one(&args.after, &args.csv.open_options(), output)?;
     let mut inputs = before.files();
     inputs.extend(after.files());
     Guard { inputs, force: args.force }.check(&args.output)?;
@@ -54,18 +54,17 @@ pub(crate) fn run(args: &ProofArgs, output: &mut Output) -> Result<u8, CliError>
 /// The sheet of a file just written, read back from the disk, against the input it was made from.
 pub(super) fn write_sheet(
     before: &Input,
-    chosen: &[usize],
     written: &Path,
     path: &Path,
     format: SheetFormat,
     output: &mut Output,
 ) -> Result<(), CliError> {
-    let after = input::open_one(&written.to_string_lossy(), output)?;
+    let after = input::read_back(written, output)?;
     // Where the new format holds one clip, it is the first of those chosen.
     let clips: Vec<(usize, usize)> = if after.source.clips.len() == before.source.clips.len() {
-        chosen.iter().map(|&index| (index, index)).collect()
+        before.chosen.iter().map(|&index| (index, index)).collect()
     } else {
-        chosen.iter().take(1).map(|&index| (index, 0)).collect()
+        before.chosen.iter().take(1).map(|&index| (index, 0)).collect()
     };
     let sheet = sheet_of(before, &after, &clips, written)?;
     write(&sheet, path, format, output)

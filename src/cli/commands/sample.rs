@@ -17,7 +17,7 @@ const MOST_POSES: usize = 50_000_000;
 
 /// Plays the clip as its own format says, unless another path is named.
 pub(crate) fn run(args: &SampleArgs, output: &mut Output) -> Result<u8, CliError> {
-    let input = input::open_one(&args.clip, output)?;
+    let input = input::open_one(&args.clip, &args.csv.open_options(), output)?;
     let clip = input.clip();
     let joints: Vec<usize> = clip.skeleton.listed().collect();
     let times = times(args, clip, joints.len())?;

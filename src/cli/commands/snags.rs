@@ -13,10 +13,11 @@ use crate::snag::{Snag, SnagKind};
 /// Gives 1 when any snag was found. A file that can't be read does not keep the others from being looked through.
 pub(crate) fn run(args: &SnagsArgs, output: &mut Output) -> Result<u8, CliError> {
     let kinds = args.kinds.clone().unwrap_or_else(|| SnagKind::ALL.to_vec());
+    let options = args.csv.open_options();
     let mut has_found = false;
     let mut failed = 0;
     for text in &args.clips {
-        let listed = input::open(text, output).and_then(|inputs| {
+        let listed = input::open(text, &options, output).and_then(|inputs| {
             for input in &inputs {
                 has_found |= list(input, &kinds, args.json, output)?;
             }
