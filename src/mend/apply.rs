@@ -2,7 +2,7 @@
 
 use std::collections::BTreeMap;
 
-use crate::clip::Clip;
+use crate::clip::{Clip, RotationTrack};
 use crate::snag::{Remedy, Snag};
 
 use super::draft::Draft;
@@ -72,8 +72,8 @@ pub(super) fn mend(draft: &mut Draft, snag: &Snag) {
     }
 }
 
-/// The largest turn between `before` and `after` at the keys of a joint, in radians. Where a key of `before` is no
-/// rotation, what is played in its place counts.
+/// The largest turn between `before` and `after` of a joint, in radians: at keys, and in the middle between them, where a
+/// long way shows that has both ends right. Where a key of `before` is no rotation, what is played in its place counts.
 pub fn change_rad(before: &Clip, after: &Clip, joint: usize) -> f64 {
     let (Some(old), Some(new)) = (before.rotation(joint), after.rotation(joint)) else { return 0.0 };
     if before.same_joint(after, joint) {
@@ -83,13 +83,12 @@ pub fn change_rad(before: &Clip, after: &Clip, joint: usize) -> f64 {
         let times = old.times.iter().chain(new.times.iter());
         return times.map(|time| old.at(time).turn_to(new.at(time))).fold(0.0, f64::max);
     }
-    let mut played = old.sound_key(0);
-    let mut largest: f64 = 0.0;
-    for (own, others) in old.keys.iter().zip(new.keys.iter()) {
-        played = own.try_normalize().unwrap_or(played);
-        if let Some(others) = others.try_normalize() {
-            largest = largest.max(played.turn_to(others));
-        }
-    }
-    largest
+    change_of_keys_rad(old, new, 0, old.keys.len().saturating_sub(1))
+}
+
+/// The largest turn between two tracks of the same key times, at the keys `first..=last` and in the middles between.
+pub(super) fn change_of_keys_rad(old: &RotationTrack, new: &RotationTrack, first: usize, last: usize) -> f64 {
+    let at_keys = (first..=last.min(old.keys.len().saturating_sub(1))).map(|key| old.times.at(key));
+    let middles = (first..last).map(|key| 0.5 * (old.times.at(key) + old.times.at(key + 1)));
+    at_keys.chain(middles).map(|time| old.at(time).turn_to(new.at(time))).fold(0.0, f64::max)
 }

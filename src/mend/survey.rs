@@ -8,7 +8,7 @@ use rayon::prelude::*;
 use crate::clip::{Clip, RotationTrack};
 use crate::snag::{Cancelled, Progress, Remedy, Snag, SnagKind, find};
 
-use super::apply::mend;
+use super::apply::{change_of_keys_rad, mend};
 use super::draft::Draft;
 
 /// What to look for.
@@ -31,7 +31,8 @@ pub struct Survey {
     pub snags: Vec<Snag>,
     /// The clip with every mend applied that asks nobody. Joints without snags are shared with the source.
     pub mended: Clip,
-    /// For each snag the largest change of orientation that its own mend makes at a key, in radians.
+    /// For each snag the largest change of orientation that its own mend makes at a key (for a long way, between its two
+    /// keys), in radians.
     pub changes_rad: Vec<f64>,
 }
 
@@ -110,12 +111,19 @@ fn one_joint(clip: &Clip, joint: usize, kind: SnagKind) -> JointOutcome {
         return JointOutcome { snags: snags.into_iter().map(|snag| (snag, 0.0)).collect(), mended: None };
     }
     let mut draft = Draft::new(track);
-    let snags = snags
+    let mut snags: Vec<(Snag, f64)> = snags
         .into_iter()
         .map(|snag| {
             mend(&mut draft, &snag);
             (snag, draft.take_change())
         })
         .collect();
-    JointOutcome { snags, mended: draft.finish() }
+    let mended = draft.finish();
+    if let (SnagKind::LongWay, Some(mended)) = (kind, &mended) {
+        // Both keys are right as they are: what changes lies between them.
+        for (snag, change) in &mut snags {
+            *change = change_of_keys_rad(track, mended, snag.first_key, snag.last_key);
+        }
+    }
+    JointOutcome { snags, mended }
 }

@@ -53,10 +53,7 @@ impl MendPass {
     /// # Errors
     /// When a snag does not fit the clip.
     pub fn apply(&self, clip: &Clip) -> Result<Clip, MendError> {
-        let mut mended = clip.clone();
-        for snag in &self.snags {
-            mended = mend::apply(&mended, snag)?;
-        }
+        let mut mended = mend::apply_all(clip, &self.snags)?;
         if self.amount < 1.0 && moves_poses(self.kind) {
             for joint in 0..mended.joints.len() {
                 if let (Some(before), Some(after)) = (clip.rotation(joint), mended.rotation(joint))
