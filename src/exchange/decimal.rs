@@ -6,6 +6,12 @@
 const POWERS: [f64; 16] =
     [1.0, 1e1, 1e2, 1e3, 1e4, 1e5, 1e6, 1e7, 1e8, 1e9, 1e10, 1e11, 1e12, 1e13, 1e14, 1e15];
 
+/// Whether a number can be a length or a size: finite, and small enough that the products of a few still are, as 32-bit
+/// floats in part.
+pub(super) fn is_measure(value: f64) -> bool {
+    value.abs() <= 1e18
+}
+
 /// A number without exponent and of at most 15 digits, which fills bytes up to a blank or the end.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub(super) struct Short {

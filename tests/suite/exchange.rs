@@ -14,7 +14,7 @@ use crate::support::shared;
 /// The clip files of one folder of the outside data, in order.
 fn clip_files(folder: &str) -> Vec<PathBuf> {
     let Some(folder) = shared(folder) else { return Vec::new() };
-    let entries = std::fs::read_dir(folder).unwrap().map(|entry| entry.unwrap().path());
+    let entries = std::fs::read_dir(folder).expect("a folder").map(|entry| entry.expect("an entry").path());
     let mut files: Vec<PathBuf> = entries.filter(|path| Format::of(path).is_ok()).collect();
     files.sort();
     files

@@ -546,10 +546,17 @@ fn every_damage_of_the_container_is_told_with_its_place() {
 }
 
 /// Random numbers without a library: the low bits of xorshift64* (Vigna 2016) are not used.
-struct Dice(u64);
+pub(crate) struct Dice(u64);
 
 impl Dice {
-    fn below(&mut self, bound: usize) -> usize {
+    /// Any number gives dice of its own.
+    pub(crate) fn new(number: u64) -> Self {
+        let mut dice = Self(number.wrapping_add(1).wrapping_mul(0x9E37_79B9_7F4A_7C15));
+        dice.below(2);
+        dice
+    }
+
+    pub(crate) fn below(&mut self, bound: usize) -> usize {
         self.0 ^= self.0 >> 12;
         self.0 ^= self.0 << 25;
         self.0 ^= self.0 >> 27;

@@ -12,6 +12,7 @@
 //! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
 //! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
 //! | `golden` | comparing a picture with the one a person accepted |
+//! | `hostile` | a hundred thousand damaged files of every format: no panic, no hang, no memory beyond the bound |
 //! | `layers` | layers point down only, and the window's libraries stay in `app` |
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
 //! | `gui_display` | the real program in a real window under Xvfb, driven by mouse and keyboard |
@@ -49,6 +50,7 @@ mod gui_screen;
 mod gui_start;
 #[cfg(feature = "gui-tests")]
 mod gui_window;
+mod hostile;
 mod layers;
 mod planter;
 mod proof;

@@ -126,6 +126,9 @@ fn frame_times(grid: &FrameGrid, notes: &mut Vec<Note>) -> (Vec<f64>, f64) {
             if times.len() > 1 && off(even_secs) <= 0.02 * even_secs {
                 return (times.to_vec(), even_secs);
             }
+            // A gap of years between two rows is damage: it is not filled at the rate of the others.
+            let most = (16 * times.len()).max(100_000);
+            let usual = usual.max((end - start) / most as f64);
             let count = ((end - start) / usual).round() as usize + 1;
             let text = format!(
                 "expected evenly spaced rows, found {} uneven ones: sampled as {count} frames of {usual} s",

@@ -3,6 +3,7 @@
 #![deny(clippy::arithmetic_side_effects, clippy::indexing_slicing)]
 
 use crate::exchange::Note;
+use crate::exchange::decimal::is_measure;
 use crate::rotor::Axis;
 
 use super::error::{BvhError, BvhErrorKind};
@@ -221,9 +222,9 @@ fn offset(scanner: &mut Scanner<'_>) -> Result<[f64; 3], BvhError> {
     for (axis, value) in ["x", "y", "z"].into_iter().zip(&mut offset) {
         let expected = || format!("a number for the {axis} of OFFSET");
         let number = scanner.number().ok().flatten().ok_or_else(|| scanner.unexpected(expected()))?;
-        if number.value.is_nan() {
+        if !is_measure(number.value) {
             scanner.go_to(number.start);
-            return Err(scanner.unexpected(format!("a finite number for the {axis} of OFFSET")));
+            return Err(scanner.unexpected(format!("a finite length for the {axis} of OFFSET")));
         }
         *value = number.value;
     }

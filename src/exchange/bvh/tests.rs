@@ -255,7 +255,7 @@ fn broken_files_are_refused_with_place_expected_and_found() {
         ),
         (
             with("OFFSET 0 90 0", "OFFSET 0 nan 0"),
-            "line 4, column 11, joint Hips: expected a finite number for the y of OFFSET, found `nan`",
+            "line 4, column 11, joint Hips: expected a finite length for the y of OFFSET, found `nan`",
         ),
         (
             with("OFFSET 0 90 0", "OFSET 0 90 0"),

@@ -5,6 +5,7 @@ use std::collections::HashMap;
 use glam::DVec3;
 
 use crate::exchange::Note;
+use crate::exchange::decimal::is_measure;
 use crate::rotor::Rotor;
 use crate::skeleton::{Joint, JointKind, Transform};
 
@@ -62,7 +63,7 @@ pub fn hierarchy(bytes: &[u8]) -> Result<Vec<Bone>, CsvError> {
         };
         let offset = |column: usize| {
             let cell = cell(column)?;
-            number(bytes, cell).filter(|value| value.is_finite()).ok_or_else(|| {
+            number(bytes, cell).filter(|&value| is_measure(value)).ok_or_else(|| {
                 CsvError::unexpected(line, "a finite number", shown(bytes, cell)).in_column(COLUMNS[column])
             })
         };
@@ -142,7 +143,7 @@ fn bone_after(rest: &str, kind: JointKind, may_be_tip: bool, line: u32) -> Resul
 /// The next `count` words as finite numbers.
 fn numbers<'a>(words: &mut impl Iterator<Item = &'a str>, count: usize) -> Option<Vec<f64>> {
     let numbers: Vec<f64> = words.take(count).map_while(|word| word.parse().ok()).collect();
-    (numbers.len() == count && numbers.iter().all(|value| value.is_finite())).then_some(numbers)
+    (numbers.len() == count && numbers.iter().all(|&value| is_measure(value))).then_some(numbers)
 }
 
 /// The joints of a clip whose columns name `columns`, in the skeleton `bones`: parents first, and the index of each

@@ -7,6 +7,7 @@ use glam::DVec3;
 
 use crate::clip::{Clip, FileAngles, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
 use crate::exchange::Note;
+use crate::exchange::decimal::is_measure;
 use crate::exchange::turns::Turns;
 use crate::rotor::{Axis, Rotor};
 use crate::skeleton::{Skeleton, SkeletonError};
@@ -152,7 +153,7 @@ fn rows(
             let value = number(bytes, cell)
                 .ok_or_else(|| CsvError::unexpected(line, "a number", shown(bytes, cell)).in_column(name))?;
             if *role == Role::Time {
-                if value.is_nan() {
+                if !is_measure(value) {
                     let expected = "a finite time";
                     return Err(CsvError::unexpected(line, expected, shown(bytes, cell)).in_column(name));
                 }

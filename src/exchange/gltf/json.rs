@@ -7,6 +7,8 @@ use std::fmt;
 use serde::de::{Deserializer, IgnoredAny, MapAccess, Visitor};
 use serde_json::{Map, Value};
 
+use crate::exchange::decimal::is_measure;
+
 use super::error::GltfError;
 
 /// The members that animation has to do with. The writer changes the text itself, so all others may stay text.
@@ -153,13 +155,20 @@ impl<'a> At<'a> {
         }))
     }
 
-    /// Exactly `N` finite numbers that may be missing.
+    /// Exactly `N` numbers of a size that can be reckoned with, that may be missing.
     pub(super) fn numbers<const N: usize>(&self, key: &str) -> Result<Option<[f64; N]>, GltfError> {
         let Some(member) = self.get(key) else { return Ok(None) };
         let wrong = || member.unlike(&format!("{N} numbers"));
         let list: Option<Vec<f64>> =
             member.value.as_array().ok_or_else(wrong)?.iter().map(Value::as_f64).collect();
-        list.and_then(|list| list.try_into().ok()).map(Some).ok_or_else(wrong)
+        let list: [f64; N] = list.and_then(|list| list.try_into().ok()).ok_or_else(wrong)?;
+        match list.iter().find(|&&number| !is_measure(number)) {
+            None => Ok(Some(list)),
+            Some(number) => {
+                let expected = format!("{N} numbers that can be reckoned with");
+                Err(GltfError::unlike(member.path, expected, format!("{number:e}")))
+            }
+        }
     }
 
     /// A truth value; missing counts as `false`.

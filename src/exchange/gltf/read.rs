@@ -142,6 +142,14 @@ fn parse(json: &[u8]) -> Result<Value, GltfError> {
     // Some writers pad the chunk with zeros in place of blanks.
     let padding = json.iter().rev().take_while(|byte| **byte == 0).count();
     let text = &json[..json.len() - padding];
+    // The parser does not look into what it passes over; the writer does.
+    if let Err(error) = std::str::from_utf8(text) {
+        let before = &text[..error.valid_up_to()];
+        let line = before.split(|&byte| byte == b'\n').count();
+        let column = before.rsplit(|&byte| byte == b'\n').next().map_or(0, <[u8]>::len) + 1;
+        let found = format!("the byte {:#04x}", text[before.len()]);
+        return Err(GltfError::unlike(format!("JSON line {line} column {column}"), "UTF-8 text", found));
+    }
     json::parse(text).map_err(|error| {
         let place = format!("JSON line {} column {}", error.line(), error.column());
         let full = error.to_string();

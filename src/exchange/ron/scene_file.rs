@@ -69,7 +69,11 @@ pub fn write(
     Ok(disk::write(path, text.as_bytes())?)
 }
 
-fn from_text(path: &Path, text: &str) -> Result<SceneFile, SceneError> {
+/// Reads a scene from text that is already here; `path` gives its folder and serves messages.
+///
+/// # Errors
+/// As [`read`], but for the disk.
+pub fn from_text(path: &Path, text: &str) -> Result<SceneFile, SceneError> {
     let syntax = |error: ron::error::SpannedError| SceneError::Syntax {
         path: path.to_owned(),
         line: error.span.start.line,

@@ -1,0 +1,408 @@
+//! A hundred thousand damaged files of every format: opened, written back, written into other formats, with no panic, no
+//! hang and no memory beyond 8 times the file and 64 MB.
+//!
+//! The work runs in a process of its own, so that its memory is not that of the tests beside it, and a hang can be told.
+
+use std::panic::{AssertUnwindSafe, catch_unwind};
+use std::path::{Path, PathBuf};
+use std::process::{Command, Stdio};
+use std::sync::Arc;
+use std::sync::atomic::{AtomicUsize, Ordering};
+use std::time::{Duration, Instant};
+
+use serde_json::{Value, json};
+use turnwright::clip::Clip;
+use turnwright::exchange::csv::{CsvOptions, TimeUnit};
+use turnwright::exchange::{OpenOptions, Source, csv, disk, encode, open_bytes, ron};
+use turnwright::rotor::Rotor;
+use turnwright::scene::Evaluator;
+
+use crate::gltf_broken::{self, Dice};
+
+/// Files that are made and opened.
+const FILES: usize = 100_000;
+/// Set in the process that does the work; holds the first file's number and the one after the last.
+const TASK: &str = "TURNWRIGHT_HOSTILE_FILES";
+/// Nothing of a few kilobytes may take this long, on a machine that is busy with much else.
+const LONGEST: Duration = Duration::from_secs(20);
+/// What any file may take beyond 8 times its own size.
+const SPARE_BYTES: u64 = 64 << 20;
+
+const BVH: &str = "HIERARCHY\nROOT Hips\n{\n\tOFFSET 0 90 0\n\tCHANNELS 6 Xposition Yposition Zposition Zrotation Xrotation Yrotation\n\
+    \tJOINT Leg\n\t{\n\t\tOFFSET 10 -40 0\n\t\tCHANNELS 3 Zrotation Xrotation Yrotation\n\t\tEnd Site\n\t\t{\n\t\t\tOFFSET 0 -40 5\n\t\t}\n\t}\n}\n\
+    MOTION\nFrames: 3\nFrame Time: 0.04\n1 2 3 10 20 30 -4 -5 -6\n1.5 2.5 3.5 11 21 31 -4.5 -5.5 -6.5\n1.6 2.6 3.6 12 22 32 -5 -6 -7\n";
+const BVH_ODD: &str = "\u{feff}hierarchy\r\n# made by hand\r\nRoot two words {\r\nOFFSET 0,5 1,5 0\r\nCHANNELS 4 Yrotation Xposition Zrotation Yrotation\r\n\
+    JOINT a { OFFSET 0 1 0 CHANNELS 1 Xrotation JOINT b { CHANNELS 0 } JOINT b { OFFSET 1 2 3 CHANNELS 2 XROTATION zposition End Site foot { OFFSET 0 0 1 } } } }\r\n\
+    MOTION\r\nFrame  Time : 0,0333\r\nframes :2\r\n1,5-2,5 3 nan 5 1e-3 -,5\r\n4,25 5\r\n+6 1.#QNAN 8 -9 10\r\n";
+const CSV: &str = "# joint hip parent - offset 0 1 0\n# joint leg parent hip offset 0 -0.5 0\n\
+    time,hip.tx,hip.ty,hip.tz,hip.qw,hip.qx,hip.qy,hip.qz,leg.z,leg.x,leg.y,head.yz,head.zx,head.xy\n\
+    0,1,2,3,1,0,0,0,10,20,30,0,0,90\n0.25,1.5,2,3,0.6,0,0.8,0,11,21,31,0,45,0\n1,2,2,3,0,-1,0,0,12,22,32,30,0,0\n";
+const CSV_SENSOR: &str = "\"Time (s)\",W,X,Y,Z,\"battery, volts\"\r\n1000,1,0,0,0,3.3\r\n1010.5,0.6,0,0.8,0,\"3.2\"\r\n1012,,nan,0,1,3.2\r\n\
+    1023,1,0,0,0,3\r\n1033.5,1,0,0.1,0,3\r\n1044,1,0,0,0.1,3\r\n";
+const CSV_BONES: &str = "joint,parent,offset.x,offset.y,offset.z\nhip,,0,1,0\nleg,hip,0,-0.5,0\n";
+const SCENE: &str = "(turnwright_scene: 1, sources: [(path: \"walk.bvh\", sha256: \"00\")], clips: [(source: 0, clip: 0, name: \"walk\", passes: [\
+    (id: 4, on: true, step: Mend(kind: \"half-turn\", amount: 0.5, snags: [(joint: \"Leg\", joint_index: 1, keys: (1, 1), frames: (1, 1), seconds: (0.04, 0.04), \
+    size_deg: 171.5, confidence: 0.75, remedy: TakeOut(0.0, 0.6, 0.0, 0.8), safe: true, text: \"Leg flips\")])), \
+    (id: 5, on: true, step: Mend(kind: \"spike\", amount: 1.0, snags: [(joint: \"Hips\", joint_index: 0, keys: (1, 2), frames: (1, 2), seconds: (0.04, 0.08), \
+    size_deg: 30.0, confidence: 1.0, remedy: Redraw, safe: true, text: \"x\"), (joint: \"Hips\", joint_index: 0, keys: (2, 2), frames: (2, 2), seconds: (0.08, 0.08), \
+    size_deg: 360.0, confidence: 1.0, remedy: Unwrap(1, 0, -1), safe: true, text: \"y\")]))], \
+    left: [(kind: \"wrap\", joint: \"Leg\", joint_index: 1, keys: (1, 2))])])\n";
+
+/// A sound file from which damaged ones are made.
+struct Seed {
+    /// Its name; the extension gives the format.
+    name: &'static str,
+    bytes: Vec<u8>,
+    /// The document of a text glTF, whose values are swapped as values.
+    json: Option<Value>,
+    /// Damaged files that are made of it, out of 100.
+    share: usize,
+}
+
+fn seeds() -> Vec<Seed> {
+    let text = |name, text: &str, share| Seed { name, bytes: text.as_bytes().to_vec(), json: None, share };
+    let small = gltf_broken::small();
+    let json = |name, document: Value, share| Seed {
+        name,
+        bytes: document.to_string().into_bytes(),
+        json: Some(document),
+        share,
+    };
+    vec![
+        json("small.gltf", small.clone(), 17),
+        json("forms.gltf", other_forms(small), 13),
+        Seed { name: "small.glb", bytes: gltf_broken::small_glb(), json: None, share: 20 },
+        text("usual.bvh", BVH, 12),
+        text("odd.bvh", BVH_ODD, 10),
+        text("kinds.csv", CSV, 9),
+        text("sensor.csv", CSV_SENSOR, 6),
+        text("bones.csv", CSV_BONES, 3),
+        text("scene.ron", SCENE, 10),
+    ]
+}
+
+/// Another document: whole-number and smooth keys, a node with a matrix, a pointer channel, things nobody knows.
+fn other_forms(mut document: Value) -> Value {
+    document["nodes"][0]["matrix"] = json!([0, 2, 0, 0, -2, 0, 0, 0, 0, 0, 2, 0, 5, 6, 7, 1]);
+    document["skins"][0]["skeleton"] = json!(2);
+    document["accessors"].as_array_mut().expect("a list").extend([
+        json!({ "bufferView": 1, "componentType": 5122, "normalized": true, "count": 3, "type": "VEC4" }),
+        json!({ "componentType": 5126, "count": 3, "type": "VEC4" }),
+        json!({ "bufferView": 0, "componentType": 5126, "count": 1, "type": "SCALAR" }),
+    ]);
+    document["animations"] = json!([
+        {
+            "name": "walk",
+            "channels": [
+                { "sampler": 0, "target": { "node": 2, "path": "rotation" } },
+                { "sampler": 1, "target": { "node": 1, "path": "rotation" } },
+                { "sampler": 2, "target": { "node": 1, "path": "scale" } },
+                { "sampler": 2, "target": { "path": "pointer", "extensions": { "KHR_animation_pointer": { "pointer": "/a" } } } },
+            ],
+            "samplers": [
+                { "input": 0, "output": 3 },
+                { "input": 5, "output": 1, "interpolation": "CUBICSPLINE" },
+                { "input": 0, "output": 2, "interpolation": "LINEAR" },
+            ],
+        },
+        {
+            "channels": [{ "sampler": 0, "target": { "node": 0, "path": "rotation" } }],
+            "samplers": [{ "input": 0, "output": 4, "extras": { "deep": [[[[{}]]]] } }],
+        },
+    ]);
+    document
+}
+
+/// Numbers that a reader may trip over.
+const NUMBERS: [&str; 22] = [
+    "0",
+    "-1",
+    "1",
+    "2",
+    "255",
+    "65536",
+    "1000000",
+    "100000000",
+    "2147483648",
+    "4000000000",
+    "4294967295",
+    "9007199254740993",
+    "18446744073709551616",
+    "1e9",
+    "1e38",
+    "1e300",
+    "1e999",
+    "-1e-320",
+    "0.5",
+    "1e-9",
+    "NaN",
+    "-inf",
+];
+
+/// Damages a file in one to four places. The same number makes the same file.
+fn damaged(seed: &Seed, others: &[Seed], dice: &mut Dice) -> Vec<u8> {
+    let mut bytes = match &seed.json {
+        Some(document) if dice.below(2) == 0 => {
+            let mut document = document.clone();
+            for _ in 0..=dice.below(3) {
+                swap_values(&mut document, dice);
+            }
+            document.to_string().into_bytes()
+        }
+        _ => seed.bytes.clone(),
+    };
+    for _ in 0..dice.below(4) {
+        damage(&mut bytes, others, dice);
+    }
+    bytes
+}
+
+fn damage(bytes: &mut Vec<u8>, others: &[Seed], dice: &mut Dice) {
+    if bytes.is_empty() {
+        return;
+    }
+    let at = dice.below(bytes.len());
+    let end = at + dice.below((bytes.len() - at).min(200)) + 1;
+    match dice.below(14) {
+        0 | 1 => bytes[at] ^= 1 << dice.below(8),
+        2 => bytes[at] = dice.below(256) as u8,
+        3 => bytes.truncate(at),
+        4 => drop(bytes.drain(at..end)),
+        // A part once more, or many times.
+        5 => {
+            let part = bytes[at..end].repeat(1 + dice.below(2) * dice.below(20));
+            bytes.splice(end..end, part);
+        }
+        // A part of another file.
+        6 => {
+            let other = &others[dice.below(others.len())].bytes;
+            let from = dice.below(other.len());
+            let to = from + dice.below((other.len() - from).min(300));
+            bytes.splice(at..end, other[from..to].iter().copied());
+        }
+        7 => {
+            let other = dice.below(bytes.len());
+            bytes.swap(at, other);
+        }
+        // Four bytes of a count, a length or a float.
+        8 => {
+            let word = [0_u32, 1, 0x7F80_0000, 0x7F7F_FFFF, 0x7FFF_FFFF, 0x8000_0000, 0xEE6B_2800, u32::MAX]
+                [dice.below(8)];
+            let at = at / 4 * 4;
+            for (byte, new) in bytes.iter_mut().skip(at).zip(word.to_le_bytes()) {
+                *byte = new;
+            }
+        }
+        // The number at or after this place.
+        _ => {
+            let is_of_number = |byte: &u8| byte.is_ascii_digit() || matches!(byte, b'.' | b'-');
+            let Some(start) = bytes[at..].iter().position(is_of_number).map(|offset| at + offset) else {
+                return;
+            };
+            let length =
+                bytes[start..].iter().position(|byte| !is_of_number(byte)).unwrap_or(bytes.len() - start);
+            bytes.splice(start..start + length, NUMBERS[dice.below(NUMBERS.len())].bytes());
+        }
+    }
+}
+
+/// Puts one value of a JSON document in the place of another, or something else altogether.
+fn swap_values(document: &mut Value, dice: &mut Dice) {
+    let mut places = Vec::new();
+    pointers(document, String::new(), &mut places);
+    let target = places[dice.below(places.len())].clone();
+    let new = match dice.below(4) {
+        0 => [Value::Null, json!(true), json!([]), json!({}), json!(""), json!("../../x"), json!(-1)]
+            [dice.below(7)]
+        .clone(),
+        1 => serde_json::from_str(NUMBERS[dice.below(16)]).unwrap_or(Value::Null),
+        2 => json!(dice.below(6)),
+        _ => document.pointer(&places[dice.below(places.len())]).cloned().unwrap_or(Value::Null),
+    };
+    if let Some(place) = document.pointer_mut(&target) {
+        *place = new;
+    }
+}
+
+fn pointers(value: &Value, own: String, places: &mut Vec<String>) {
+    match value {
+        Value::Array(items) => {
+            for (index, item) in items.iter().enumerate() {
+                pointers(item, format!("{own}/{index}"), places);
+            }
+        }
+        Value::Object(members) => {
+            for (key, item) in members {
+                pointers(item, format!("{own}/{key}"), places);
+            }
+        }
+        _ => {}
+    }
+    places.push(own);
+}
+
+/// The damaged file of a number.
+fn file(seeds: &[Seed], number: usize) -> (&Seed, Vec<u8>) {
+    let mut left = number % seeds.iter().map(|seed| seed.share).sum::<usize>();
+    let is_it = |seed: &&Seed| left.checked_sub(seed.share).map(|rest| left = rest).is_none();
+    let seed = seeds.iter().find(is_it).expect("the shares are all of it");
+    let mut dice = Dice::new(number as u64);
+    (seed, damaged(seed, seeds, &mut dice))
+}
+
+/// Opens a file, and does with it what the program does. Gives whether it could be read.
+fn handle(seed: &Seed, bytes: &[u8], number: usize) -> bool {
+    if seed.name == "scene.ron" {
+        return handle_scene(bytes);
+    }
+    if seed.name == "bones.csv" {
+        let Ok(bones) = csv::hierarchy(bytes) else { return false };
+        let csv = CsvOptions { hierarchy: Some(bones), ..CsvOptions::default() };
+        let header_and_rows = CSV.split_inclusive('\n').skip(2).collect::<String>();
+        let path = Path::new("nowhere/kinds.csv");
+        return open_bytes(path, header_and_rows.into_bytes(), &OpenOptions { csv }).is_ok();
+    }
+    let path = Path::new("nowhere").join(seed.name);
+    let time_unit = [None, Some(TimeUnit::Microseconds)][number % 2];
+    let options = OpenOptions { csv: CsvOptions { time_unit, ..CsvOptions::default() } };
+    let Ok(source) = open_bytes(&path, bytes.to_vec(), &options) else { return false };
+    let same = encode(&source, &source.clips, None, &path).expect("what was read can be written");
+    assert!(same.bytes == bytes, "a file that nobody touched is given back as it was");
+    // Changed, and read again.
+    let results: Vec<Arc<Clip>> = source.clips.iter().map(|clip| Arc::new(changed(clip))).collect();
+    if let Ok(written) = encode(&source, &results, None, &path) {
+        let again = open_bytes(&path, written.bytes, &options);
+        assert!(again.is_ok(), "what was written can be read: {again:?}");
+    }
+    convert(&source, number);
+    true
+}
+
+/// The clip with another key in the middle of its first turning joint.
+fn changed(clip: &Clip) -> Clip {
+    let _ = clip.world_at(clip.duration_secs * 0.4);
+    let Some(joint) = (0..clip.joints.len()).find(|&joint| clip.rotation(joint).is_some()) else {
+        return clip.clone();
+    };
+    let Some(track) = clip.rotation(joint) else { return clip.clone() };
+    let key = Rotor::from_xyzw([0.5, -0.5, 0.5, 0.5]);
+    clip.with_rotation(joint, track.with_keys(&[(track.keys.len() / 2, key)]))
+}
+
+/// One of the other formats in turn.
+fn convert(source: &Source, number: usize) {
+    let target = PathBuf::from("nowhere/new").with_extension(["bvh", "csv", "glb", "gltf"][number / 100 % 4]);
+    if let Ok(written) = encode(source, &source.clips, None, &target)
+        && written.beside.is_none()
+    {
+        let again = open_bytes(&target, written.bytes, &OpenOptions::default());
+        assert!(again.is_ok(), "what was written as {} can be read: {again:?}", target.display());
+    }
+}
+
+fn handle_scene(bytes: &[u8]) -> bool {
+    let Some(scene) =
+        std::str::from_utf8(bytes).ok().and_then(|text| ron::from_text(Path::new("x.ron"), text).ok())
+    else {
+        return false;
+    };
+    let source =
+        open_bytes(Path::new("usual.bvh"), BVH.into(), &OpenOptions::default()).expect("a sound file");
+    for work in &scene.document.works {
+        let _ = Evaluator::default().evaluate(&source.clips[0], &work.passes);
+    }
+    true
+}
+
+/// Peak memory of this process in bytes; `None` where the system does not tell.
+fn peak_bytes() -> Option<u64> {
+    let status = String::from_utf8(disk::read(Path::new("/proc/self/status")).ok()?).ok()?;
+    let line = status.lines().find_map(|line| line.strip_prefix("VmHWM:"))?;
+    line.trim().strip_suffix("kB")?.trim().parse().ok().map(|kilobytes: u64| kilobytes << 10)
+}
+
+/// Makes and handles the files; panics at the first that fails.
+#[expect(clippy::print_stdout, reason = "the parent process reads it")]
+fn work(first: usize, last: usize) {
+    let seeds = seeds();
+    for seed in &seeds {
+        assert!(handle(seed, &seed.bytes, 0), "{} itself can be read", seed.name);
+    }
+    let (current, done) = (AtomicUsize::new(first), AtomicUsize::new(0));
+    let (mut n_read, mut n_failed) = (0_usize, 0_usize);
+    std::thread::scope(|scope| {
+        scope.spawn(|| {
+            let (mut seen, mut since) = (usize::MAX, Instant::now());
+            while done.load(Ordering::Relaxed) == 0 {
+                let now = current.load(Ordering::Relaxed);
+                if now != seen {
+                    (seen, since) = (now, Instant::now());
+                }
+                if since.elapsed() > LONGEST {
+                    println!("file {now} hangs");
+                    std::process::abort();
+                }
+                std::thread::sleep(Duration::from_millis(20));
+            }
+        });
+        let start_bytes = peak_bytes();
+        for number in first..last {
+            current.store(number, Ordering::Relaxed);
+            let (seed, bytes) = file(&seeds, number);
+            if let Ok(is_read) = catch_unwind(AssertUnwindSafe(|| handle(seed, &bytes, number))) {
+                n_read += usize::from(is_read);
+            } else {
+                println!("file {number} of {} fails: {}", seed.name, String::from_utf8_lossy(&bytes));
+                n_failed += 1;
+                if n_failed > 3 {
+                    break;
+                }
+            }
+            if number % 8 == 0
+                && let (Some(start), Some(peak)) = (start_bytes, peak_bytes())
+                && peak - start > SPARE_BYTES
+            {
+                println!("by file {number} of {} {} MB are used", seed.name, (peak - start) >> 20);
+                n_failed += 1;
+                break;
+            }
+        }
+        done.store(1, Ordering::Relaxed);
+        let peak = peak_bytes().zip(start_bytes).map(|(peak, start)| (peak - start) >> 20);
+        println!("{n_read} of {} could still be read, {peak:?} MB at most", last - first);
+    });
+    assert_eq!(n_failed, 0, "files failed");
+    assert!(n_read * 20 > last - first, "too few are still readable to say anything: {n_read}");
+}
+
+#[test]
+fn a_hundred_thousand_damaged_files_do_no_harm() {
+    if let Ok(task) = std::env::var(TASK) {
+        let (first, last) = task.split_once("..").expect("two numbers");
+        return work(first.parse().expect("a number"), last.parse().expect("a number"));
+    }
+    let started = Instant::now();
+    let n_parts = std::thread::available_parallelism().map_or(1, usize::from).clamp(1, 4);
+    let bounds = |part: usize| FILES * part / n_parts;
+    let parts: Vec<_> = (0..n_parts)
+        .map(|part| {
+            Command::new(std::env::current_exe().expect("this program"))
+                .args(["--exact", "hostile::a_hundred_thousand_damaged_files_do_no_harm", "--nocapture"])
+                .env("RUST_BACKTRACE", "0")
+                .env(TASK, format!("{}..{}", bounds(part), bounds(part + 1)))
+                .stdout(Stdio::piped())
+                .stderr(Stdio::piped())
+                .spawn()
+                .expect("this program starts again")
+        })
+        .collect();
+    for part in parts {
+        let output = part.wait_with_output().expect("it ends");
+        let text = String::from_utf8_lossy(&output.stdout);
+        let errors = String::from_utf8_lossy(&output.stderr);
+        assert!(output.status.success(), "{text}\n{errors}");
+        assert!(text.contains("could still be read"), "the work was done: {text}");
+        println!("{}", text.lines().find(|line| line.contains("could still be read")).unwrap_or_default());
+    }
+    println!("{FILES} files in {:.1} s", started.elapsed().as_secs_f64());
+}
