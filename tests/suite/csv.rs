@@ -202,7 +202,7 @@ fn every_gltf_clip_becomes_csv_with_every_joint_where_it_was() {
                     let far = own[joint].position().distance(others[other].position());
                     // Sizes that only tremble about their rest are left out.
                     assert!(far < 1e-3 * (1.0 + own[joint].position().length()), "{place} {frame}: {far}");
-                    assert!(world.rotation.turn_to(others[other].rotation) < 1e-7, "{place} {frame}");
+                    assert!(own[joint].rotation.turn_to(others[other].rotation) < 1e-7, "{place} {frame}");
                 }
             }
         }
