@@ -5,7 +5,7 @@
 mod address;
 pub mod bvh;
 pub mod csv;
-mod decimal;
+pub mod decimal;
 pub mod disk;
 mod export;
 pub mod gltf;

@@ -6,6 +6,7 @@ use glam::DVec3;
 
 use crate::clip::{Clip, FrameGrid, Times, continuous_angles};
 use crate::exchange::Note;
+use crate::exchange::decimal::push_six_decimals;
 use crate::exchange::losses;
 use crate::rotor::{EulerOrder, Rotor};
 use crate::skeleton::WorldJoint;
@@ -62,6 +63,9 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
         let mut put = |value: f64, decimals: usize, bytes: &mut Vec<u8>| {
             if !std::mem::take(&mut is_first) {
                 bytes.push(b' ');
+            }
+            if decimals == 6 {
+                return push_six_decimals(value, bytes);
             }
             // Adding 0 takes the sign from −0; a value may still round to it.
             let text = format!("{:.decimals$}", value + 0.0);

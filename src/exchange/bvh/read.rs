@@ -118,6 +118,9 @@ fn rows(
     // A number takes a digit and a blank at least: what a file announces beyond that it can't have.
     let mut values = Vec::with_capacity(announced.saturating_mul(columns).min(rest / 2 + 1));
     loop {
+        if columns > 0 {
+            scanner.plain_numbers(&mut values);
+        }
         match scanner.number() {
             Ok(Some(number)) if columns > 0 => values.push(number.value),
             Ok(Some(number)) => {

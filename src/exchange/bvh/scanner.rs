@@ -3,7 +3,7 @@
 #![deny(clippy::arithmetic_side_effects, clippy::indexing_slicing)]
 
 use crate::exchange::Note;
-use crate::exchange::decimal::short;
+use crate::exchange::decimal::{short, shorts};
 
 use super::error::{BvhError, BvhErrorKind};
 
@@ -128,6 +128,15 @@ impl<'a> Scanner<'a> {
     pub(super) fn letters(&mut self) -> &'a [u8] {
         self.skip_blanks();
         self.take_while(|byte| byte.is_ascii_alphabetic())
+    }
+
+    /// Past all plain numbers that come next, each behind a blank: nearly the whole of a motion part.
+    pub(super) fn plain_numbers(&mut self, values: &mut Vec<f64>) {
+        let stretch = shorts(self.bytes, self.pos, values);
+        if stretch.has_point {
+            self.oddities.points.add(self.pos);
+        }
+        self.pos = stretch.end;
     }
 
     /// Past the next number. `Ok(None)` at the end of the text; `Err(())`, and no step forward, where no number stands.

@@ -4,6 +4,7 @@ use std::io::Write as _;
 
 use crate::clip::{Clip, RotationTrack};
 use crate::exchange::Note;
+use crate::exchange::decimal::push_six_decimals;
 use crate::exchange::turns::Turns;
 use crate::rotor::{Axis, Rotor};
 
@@ -265,13 +266,13 @@ fn patched(document: &Document, numbers: &[Number], values: &[f64]) -> Vec<u8> {
             continue;
         }
         bytes.extend_from_slice(&document.bytes[copied..number.start]);
-        let text = decimal(*value, document.decimal_comma);
         // Numbers that were run together are told apart by their sign alone.
         let touches = bytes.last().is_some_and(|byte| !super::scanner::is_blank(*byte));
-        if touches && !text.starts_with('-') {
-            bytes.push(b' ');
+        let start = bytes.len();
+        push_decimal(*value, document.decimal_comma, &mut bytes);
+        if touches && bytes[start] != b'-' {
+            bytes.insert(start, b' ');
         }
-        bytes.extend_from_slice(text.as_bytes());
         copied = number.end;
     }
     bytes.extend_from_slice(&document.bytes[copied..]);
@@ -332,7 +333,7 @@ fn rewritten(
             let index = offset.saturating_add(row * columns + column);
             match numbers.get(index).filter(|number| same(number.value, *value)) {
                 Some(number) => bytes.extend_from_slice(&source[number.start..number.end]),
-                None => bytes.extend_from_slice(decimal(*value, document.decimal_comma).as_bytes()),
+                None => push_decimal(*value, document.decimal_comma, &mut bytes),
             }
         }
         bytes.extend_from_slice(line_end);
@@ -346,10 +347,12 @@ fn same(a: f64, b: f64) -> bool {
 }
 
 /// Fixed notation with 6 decimals.
-fn decimal(value: f64, comma: bool) -> String {
-    let text = format!("{value:.6}");
-    let text = if text == "-0.000000" { text[1..].to_owned() } else { text };
-    with_mark(text.to_lowercase(), comma)
+fn push_decimal(value: f64, comma: bool, bytes: &mut Vec<u8>) {
+    let start = bytes.len();
+    push_six_decimals(value, bytes);
+    if comma && let Some(point) = bytes[start..].iter_mut().find(|byte| **byte == b'.') {
+        *point = b',';
+    }
 }
 
 fn with_mark(text: String, comma: bool) -> String {
