@@ -250,7 +250,7 @@ fn to_text(
         sources: sources.collect(),
         clips: clips.collect(),
     };
-    let pretty = ron::ser::PrettyConfig::new().depth_limit(6).struct_names(false).new_line("\n");
+    let pretty = ron::ser::PrettyConfig::new().depth_limit(7).struct_names(false).new_line("\n");
     let text = ron::ser::to_string_pretty(&scene, pretty)
         .map_err(|error| SceneError::Encode { path: path.to_owned(), what: error.to_string() })?;
     Ok(text + "\n")
