@@ -8,7 +8,7 @@ use turnwright::cli::{self, Outcome, WindowPicture};
 fn main() -> ExitCode {
     match cli::run(std::env::args_os()) {
         Outcome::Done(code) => ExitCode::from(code),
-        Outcome::OpenWindow(files) => match open_window(files) {
+        Outcome::OpenWindow(files) => match open_window(&files) {
             Ok(()) => ExitCode::SUCCESS,
             Err(error) => cli::window_failed(&error),
         },
@@ -17,8 +17,8 @@ fn main() -> ExitCode {
 }
 
 #[cfg(feature = "gui")]
-fn open_window(files: Vec<PathBuf>) -> Result<(), turnwright::app::StartError> {
-    turnwright::app::open(turnwright::app::Start::of_arguments(&files))
+fn open_window(files: &[PathBuf]) -> Result<(), turnwright::app::StartError> {
+    turnwright::app::open(turnwright::app::Start::of_arguments(files))
 }
 
 #[cfg(feature = "gui")]
@@ -44,7 +44,7 @@ fn draw_window(wanted: &WindowPicture) -> ExitCode {
 const NO_WINDOW: &str = "this build has no window; commands that work without one: demo, snags, mend, convert, sample, picture, proof";
 
 #[cfg(not(feature = "gui"))]
-fn open_window(_files: Vec<PathBuf>) -> Result<(), &'static str> {
+fn open_window(_files: &[PathBuf]) -> Result<(), &'static str> {
     Err(NO_WINDOW)
 }
 

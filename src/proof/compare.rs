@@ -3,7 +3,7 @@
 use crate::clip::Clip;
 use crate::mend;
 use crate::mend::SurveyOptions;
-use crate::snag::Progress;
+use crate::snag::{Progress, Snag};
 
 use super::curves::joint_curves;
 use super::error::ProofError;
@@ -11,12 +11,12 @@ use super::measure::measure;
 use super::pictures::pictures;
 use super::sheet::{ClipProof, FoundSnag};
 
-/// Measures `after` against `before`, looks for snags in both, and draws what changed.
+/// Measures `after` against `before`, and looks for snags in both. Without pictures: see [`ClipProof::draw`].
 ///
 /// `label` and `index` name the clip in its file.
 ///
 /// # Errors
-/// When the two have no joint in common, a picture cannot be made, or `progress` stops the work.
+/// When the two have no joint in common, or `progress` stops the work.
 pub fn compare(
     before: &Clip,
     after: &Clip,
@@ -27,14 +27,26 @@ pub fn compare(
     let measurement = measure(before, after, progress)?;
     let found = |clip: &Clip| -> Result<Vec<FoundSnag>, ProofError> {
         let survey = mend::survey(clip, &SurveyOptions::default(), progress)?;
-        Ok(survey
-            .snags
-            .iter()
-            .map(|snag| FoundSnag::new(snag, clip.skeleton.label(snag.joint), false))
-            .collect())
+        let label = |snag: &Snag| clip.skeleton.label(snag.joint);
+        Ok(survey.snags.iter().map(|snag| FoundSnag::new(snag, label(snag), false)).collect())
     };
-    let (snags_before, snags_after) = (found(before)?, found(after)?);
-    let pictures = pictures([before, after], &measurement, [&snags_before, &snags_after])?;
-    let curves = joint_curves(before, after, &measurement);
-    Ok(ClipProof { curves, pictures, ..ClipProof::new(label, index, measurement, snags_before, snags_after) })
+    Ok(ClipProof::new(label, index, measurement, found(before)?, found(after)?))
+}
+
+impl ClipProof {
+    /// Adds the curves and pictures that a page for people shows, if anything was found or has changed.
+    ///
+    /// # Errors
+    /// When a picture cannot be made.
+    pub fn draw(&mut self, before: &Clip, after: &Clip) -> Result<(), ProofError> {
+        let is_still = self.measurement.joints_untouched() == self.measurement.joints.len();
+        if is_still && self.found.is_empty() && self.new.is_empty() {
+            return Ok(());
+        }
+        self.curves = joint_curves(before, after, &self.measurement);
+        let still_there = self.found.iter().filter(|snag| !snag.gone).chain(&self.new).cloned();
+        let snags_after: Vec<FoundSnag> = still_there.collect();
+        self.pictures = pictures([before, after], &self.measurement, [&self.found, &snags_after])?;
+        Ok(())
+    }
 }

@@ -31,7 +31,7 @@ const ROUNDING_RAD: f64 = 1.75e-5;
 /// How much of a clip is shown around the largest change, seconds.
 const WINDOW_SECS: f64 = 5.0;
 /// The most points of a curve; more than the sheet has pixels.
-const MOST_POINTS: usize = 1200;
+const MOST_POINTS: usize = 900;
 
 /// The curves of the joints that changed most, largest first.
 pub fn joint_curves(before: &Clip, after: &Clip, measurement: &Measurement) -> Vec<JointCurves> {
@@ -45,7 +45,7 @@ fn curves_of(before: &Clip, after: &Clip, joint: &JointMeasure) -> JointCurves {
     let end = before.duration_secs.min(after.duration_secs);
     let start = (joint.change.at_secs - 0.5 * WINDOW_SECS).min(end - WINDOW_SECS).max(0.0);
     let stop = (start + WINDOW_SECS).min(end);
-    let points = (((stop - start) * before.grid.rate * 2.0).ceil() as usize).clamp(1, MOST_POINTS);
+    let points = (((stop - start) * before.grid.rate).round() as usize).clamp(1, MOST_POINTS);
     let times_secs: Vec<f64> =
         (0..=points).map(|point| start + (stop - start) * point as f64 / points as f64).collect();
     // In the middle of the shown motion, so that the angles stay as small as they can.

@@ -28,8 +28,9 @@ fn through(source: &Source, target: &str) -> Arc<Clip> {
 }
 
 fn sheet(before: &Clip, after: &Clip) -> Sheet {
-    let clip: ClipProof =
+    let mut clip: ClipProof =
         proof::compare(before, after, "take <1>".to_owned(), 0, &Unwatched).expect("the clips share joints");
+    clip.draw(before, after).expect("the pictures can be made");
     let facts = |file: &str| FileFacts { file: file.to_owned(), sha256: disk::hash(file.as_bytes()) };
     Sheet {
         before: facts("a.bvh"),

@@ -72,7 +72,7 @@ fn do_scene(scene: &DemoScene, folder: &Path, output: &mut Output) -> Result<(),
         output.say(&format!("wrote {}", written.display()));
     }
     let after = input::read_back(&written, output)?;
-    let sheet = sheet_of(&input, &after, &[(0, 0)], &written)?;
+    let sheet = sheet_of(&input, &after, &[(0, 0)], SheetFormat::Html)?;
     for (extension, format) in [("html", SheetFormat::Html), ("json", SheetFormat::Json)] {
         write(&sheet, &folder.join(format!("{}-proof.{extension}", scene.name)), format, output)?;
     }

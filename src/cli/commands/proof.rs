@@ -9,7 +9,7 @@ use crate::cli::input::{self, Input};
 use crate::cli::output::Output;
 use crate::cli::progress::ProgressLine;
 use crate::exchange::{Guard, disk};
-use crate::proof::{self, FileFacts, Sheet, sheet_html, sheet_json};
+use crate::proof::{self, FileFacts, ProofError, Sheet, sheet_html, sheet_json};
 
 /// The form of a sheet, told by the file's extension.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -46,7 +46,7 @@ pub(crate) fn run(args: &ProofArgs, output: &mut Output) -> Result<u8, CliError>
     inputs.extend(after.files());
     Guard { inputs, force: args.force }.check(&args.output)?;
     let clips = [(before.first(), after.first())];
-    let sheet = sheet_of(&before, &after, &clips, &args.output)?;
+    let sheet = sheet_of(&before, &after, &clips, format)?;
     write(&sheet, &args.output, format, output)?;
     Ok(DONE)
 }
@@ -66,29 +66,34 @@ pub(super) fn write_sheet(
     } else {
         before.chosen.iter().take(1).map(|&index| (index, 0)).collect()
     };
-    let sheet = sheet_of(before, &after, &clips, written)?;
+    let sheet = sheet_of(before, &after, &clips, format)?;
     write(&sheet, path, format, output)
 }
 
-/// Measures pairs of clips, each the index of one before and of one after.
+/// Measures pairs of clips, each the index of one before and of one after; with pictures where the form has them.
 pub(super) fn sheet_of(
     before: &Input,
     after: &Input,
     clips: &[(usize, usize)],
-    path: &Path,
+    format: SheetFormat,
 ) -> Result<Sheet, CliError> {
     let facts = |input: &Input| FileFacts {
         file: input.source.path.display().to_string(),
         sha256: input.source.sha256.clone(),
     };
-    let progress = ProgressLine::new(format!("{}: measuring", path.display()));
+    let progress = ProgressLine::new(format!("{}: measuring", after.source.path.display()));
     let clips = clips
         .iter()
         .map(|&(b, a)| {
             let label = before.source.clip_label(b);
-            proof::compare(&before.results[b], &after.results[a], label, b, &progress)
+            let (before, after) = (&before.results[b], &after.results[a]);
+            let mut clip = proof::compare(before, after, label, b, &progress)?;
+            if format == SheetFormat::Html {
+                clip.draw(before, after)?;
+            }
+            Ok(clip)
         })
-        .collect::<Result<Vec<_>, _>>()
+        .collect::<Result<Vec<_>, ProofError>>()
         .map_err(|source| CliError::Proof { path: after.path.clone(), source })?;
     let notes = [before, after]
         .into_iter()
