@@ -283,10 +283,11 @@ impl Bench {
     /// What has been decided about each snag, in their order.
     pub fn snag_states(&mut self) -> Arc<Vec<SnagState>> {
         let key = self.snag_key();
-        let work = self.work().cloned();
-        let states = self.models.states.get_or_compute(key, |key| {
+        let Self { models, project, session, .. } = self;
+        let work = project.as_ref().and_then(|project| project.document().works.get(session.work));
+        let states = models.states.get_or_compute(key, |key| {
             let snags = key.snags.as_ref().map_or(&[][..], |snags| snags.as_slice());
-            Arc::new(work.map(|work| snag_states(snags, &work)).unwrap_or_default())
+            Arc::new(work.map(|work| snag_states(snags, work)).unwrap_or_default())
         });
         Arc::clone(states)
     }

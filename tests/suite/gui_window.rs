@@ -82,7 +82,7 @@ impl Bench<'_> {
 fn demo_file(folder: &Path) -> PathBuf {
     let scene = turnwright::demo::SCENES[0];
     let path = folder.join(scene.clip_file);
-    disk::write(&path, scene.clip_bytes).unwrap();
+    disk::write(&path, scene.clip_bytes).expect("a folder to write to");
     path
 }
 
@@ -397,14 +397,13 @@ fn long_take(frames: usize) -> Vec<u8> {
     use std::fmt::Write as _;
     let mut text =
         String::from("HIERARCHY\nROOT j0\n{\nOFFSET 0 0 0\nCHANNELS 3 Zrotation Xrotation Yrotation\n");
-    for limb in 0..6 {
-        for joint in 0..10 - usize::from(limb == 5) {
+    for limb in 0..6_i32 {
+        for joint in 0..10 - i32::from(limb == 5) {
             let name = 1 + limb * 10 + joint;
-            let aside = f64::from(u8::try_from(limb).unwrap()) - 2.5;
+            let aside = f64::from(limb) - 2.5;
             let _ = write!(
                 text,
-                "JOINT j{name}\n{{\nOFFSET {} 9 {joint}\nCHANNELS 3 Zrotation Xrotation Yrotation\n",
-                aside
+                "JOINT j{name}\n{{\nOFFSET {aside} 9 {joint}\nCHANNELS 3 Zrotation Xrotation Yrotation\n",
             );
         }
         text.push_str("End Site\n{\nOFFSET 0 5 0\n}\n");
@@ -429,9 +428,9 @@ fn long_take(frames: usize) -> Vec<u8> {
 /// Middle time of a frame of the window while it is scrubbed, interface and painting, in milliseconds.
 fn frame_time(frames: usize) -> f64 {
     use turnwright::app::paint::Headless;
-    let folder = tempfile::tempdir().unwrap();
+    let folder = tempfile::tempdir().expect("a folder to write to");
     let path = folder.path().join("long.bvh");
-    disk::write(&path, &long_take(frames)).unwrap();
+    disk::write(&path, &long_take(frames)).expect("a folder to write to");
     let mut headless = Headless::new(egui::vec2(1440.0, 900.0), 1.0, 2);
     let start = Start::Files(vec![ClipAddress { path, clip: None }]);
     let mut window = Window::unthreaded(headless.context(), start);

@@ -58,8 +58,13 @@ impl Window {
     }
 
     fn order_evaluation(&mut self, source: &Arc<Clip>) {
-        let passes = self.bench.passes();
         let Some(findings) = self.bench.findings() else { return };
+        let known = findings.evaluated.as_ref().map(|evaluated| &evaluated.passes);
+        let is_unchanged = self.bench.work().is_some_and(|work| known == Some(&work.passes));
+        if self.bench.preview.is_none() && is_unchanged {
+            return;
+        }
+        let passes = self.bench.passes();
         if findings.evaluated.as_ref().is_some_and(|evaluated| evaluated.passes == passes) {
             return;
         }

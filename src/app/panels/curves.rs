@@ -82,6 +82,7 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         }
     }
     keys_ui(&inside, &look, &clip, joint, &set, &axis, &values);
+    names_ui(&inside, &look, &set, &axis, &values);
     let now = session.playback.playhead_secs;
     playhead(&inside, &look, &axis, now, area.y_range());
     legend_ui(&painter, &look, area, &set, now, source_alone);
@@ -295,6 +296,37 @@ fn snag_spans_ui(painter: &Painter, axis: &TimeAxis, plot: Rect, joint: usize, s
             letter_plate(painter, look, pos2(middle, y + 9.0), 13.0, snag.kind.letter(), state);
             last_x = middle;
         }
+    }
+}
+
+/// The name of each curve at its right end: colour alone must not tell them apart.
+fn names_ui(painter: &Painter, look: &Look, set: &CurveSet, axis: &TimeAxis, values: &ValueAxis) {
+    const APART: f32 = 14.0;
+    if set.lines.len() < 2 {
+        return;
+    }
+    let font = FontId::proportional(12.0);
+    let mut places: Vec<(f32, &CurveLine)> = set
+        .lines
+        .iter()
+        .filter_map(|line| {
+            Some((values.y(set.times.value(line.shown().values(), axis.window.end_secs)?), line))
+        })
+        .filter(|(y, _)| y.is_finite())
+        .collect();
+    places.sort_by(|(a, _), (b, _)| a.total_cmp(b));
+    let mut lowest = f32::NEG_INFINITY;
+    let count = places.len();
+    for (place, (y, line)) in places.into_iter().enumerate() {
+        // Above its curve, below the name before it, and with room for those still to come.
+        let room = values.rows.max - APART * (count - place) as f32;
+        let y = (y - 9.0).max(lowest + APART).clamp(values.rows.min, room.max(values.rows.min));
+        lowest = y;
+        let galley = painter.layout_no_wrap(line.name.clone(), font.clone(), legible(look, line.color));
+        let at = pos2(axis.span.max - galley.size().x - 4.0, y - galley.size().y / 2.0);
+        let plate = Rect::from_min_size(at, galley.size()).expand2(vec2(3.0, 0.0));
+        painter.rect_filled(plate, 3.0, look.background.gamma_multiply(0.85));
+        painter.galley(at, galley, look.text);
     }
 }
 

@@ -9,7 +9,7 @@ use egui::{
 use super::super::bench::file_name;
 use super::super::commands::{Command, HOLD_FOR_SOURCE, MORE_KEYS, Menu, TABLE};
 use super::super::file_picker::Purpose;
-use super::super::view_models::{Memo, counted, pass_rows};
+use super::super::view_models::{LogBlock, Memo, counted, log_blocks, pass_rows};
 use super::Scope;
 use crate::exchange::csv::{NamedColumns, TimeUnit};
 use crate::exchange::disk;
@@ -597,21 +597,24 @@ fn key_row(ui: &mut Ui, scope: &Scope<'_>, label: &str, keys: &str, tooltip: &st
 fn changes_sheet(ui: &mut Ui, scope: &mut Scope<'_>) {
     heading(ui, "What's new");
     ScrollArea::vertical().max_height(340.0).auto_shrink(false).show(ui, |ui| {
-        for line in CHANGES.lines() {
-            let look = &scope.look;
-            if let Some(title) = line.strip_prefix("## ") {
-                ui.add_space(6.0);
-                ui.label(RichText::new(title).size(16.0).color(look.text));
-            } else if let Some(title) = line.strip_prefix("### ") {
-                ui.add_space(3.0);
-                ui.label(RichText::new(title).size(14.0).color(look.text));
-            } else if let Some(item) = line.strip_prefix("- ") {
-                ui.horizontal_top(|ui| {
-                    ui.label(RichText::new("·").color(look.faint));
-                    ui.add(egui::Label::new(RichText::new(item).color(look.text)).wrap());
-                });
-            } else if !line.starts_with('#') && !line.trim().is_empty() {
-                ui.add(egui::Label::new(RichText::new(line.trim()).color(look.faint)).wrap());
+        let look = scope.look;
+        for block in log_blocks(CHANGES) {
+            match block {
+                LogBlock::Heading(depth, words) => {
+                    ui.add_space(if depth == 2 { 8.0 } else { 4.0 });
+                    let size = if depth == 2 { 16.5 } else { 14.5 };
+                    ui.label(RichText::new(words).size(size).color(look.text));
+                }
+                LogBlock::Item(words) => {
+                    ui.horizontal_top(|ui| {
+                        let (dot, _) = ui.allocate_exact_size(vec2(10.0, 18.0), Sense::hover());
+                        ui.painter().circle_filled(dot.center(), 2.0, look.faint);
+                        ui.add(egui::Label::new(RichText::new(words).color(look.text)).wrap());
+                    });
+                }
+                LogBlock::Text(words) => {
+                    ui.add(egui::Label::new(RichText::new(words).color(look.faint)).wrap());
+                }
             }
         }
     });

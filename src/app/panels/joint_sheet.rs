@@ -7,7 +7,7 @@ use super::super::theme::INSET;
 use super::super::view_models::{
     JointNumbers, RotationNumbers, SnagState, counted, degrees, degrees_fixed, joint_numbers, tree_rows,
 };
-use super::super::widgets::{Icon, hint, paint_icon, strip};
+use super::super::widgets::{Icon, focus_ring, hint, paint_icon, strip};
 use super::Scope;
 
 const TREE_ROW: f32 = 20.0;
@@ -120,6 +120,7 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
             job.wrap = egui::text::TextWrapping::truncate_at_width((right - left - 18.0).max(12.0));
             let galley = ui.painter().layout_job(job);
             ui.painter().galley(pos2(left + 18.0, bounds.center().y - galley.size().y / 2.0), galley, ink);
+            focus_ring(ui, &response);
             if response.clicked() {
                 scope.out.push(Command::ChooseJoint(Some(row.joint)));
             }

@@ -9,7 +9,7 @@ use super::super::commands::{Action, Command};
 use super::super::jobs::Slot;
 use super::super::theme::{INSET, Look, ROW_HEIGHT};
 use super::super::view_models::{SnagOrder, SnagRow, SnagState};
-use super::super::widgets::{action_button, hint, letter_plate, strip};
+use super::super::widgets::{action_button, focus_ring, hint, letter_plate, strip};
 use super::Scope;
 use crate::scene::SnagMark;
 use crate::snag::SnagKind;
@@ -239,6 +239,7 @@ fn row_ui(
     if let Some(words) = edges.words {
         cell_ui(painter, &row.text, words, y, look.faint, false);
     }
+    focus_ring(ui, &response);
     if response.clicked() {
         out.push(Command::ChooseSnag(row.index));
     }

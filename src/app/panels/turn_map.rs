@@ -15,7 +15,7 @@ use super::super::view_models::{
     HeatKind, HeatMap, SnagState, degrees, rotation_at, seconds, ticks, worst_first,
 };
 use super::super::widgets::{
-    TimeAxis, hint, letter_plate, playhead, read_out, scrub_and_zoom, segment, strip,
+    TimeAxis, focus_ring, hint, letter_plate, playhead, read_out, scrub_and_zoom, segment, strip,
 };
 use super::Scope;
 use crate::clip::Clip;
@@ -230,6 +230,7 @@ fn draw_rows(
         if response.clicked() {
             scope.out.push(Command::ChooseJoint(Some(joint)));
         }
+        focus_ring(ui, &response);
         if is_chosen {
             painter.rect_filled(cell, 0.0, look.chosen);
             painter.rect_filled(Rect::from_min_size(cell.min, vec2(3.0, cell.height())), 0.0, look.selection);

@@ -1,5 +1,6 @@
 //! What the panels show, as plain data: no egui types, so that deriving it can be tested without a window.
 
+mod change_log;
 mod changes;
 mod curves;
 mod figure;
@@ -14,6 +15,7 @@ mod snag_rows;
 mod time_window;
 mod words;
 
+pub use change_log::{LogBlock, log_blocks};
 pub use changes::{Changes, changes};
 pub use curves::{CurveLine, CurveSet, CurveView, curve_set};
 pub use figure::{FigureRequest, Stage, bounds_at, figure_view, scene_from_joint, tip_path};

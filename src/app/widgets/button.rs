@@ -115,6 +115,7 @@ pub(crate) fn segment(ui: &mut Ui, words: &str, action: Action, now: &Situation,
         ui.painter().rect_filled(bounds, 4.0, look.hover);
     }
     ui.painter().galley(bounds.center() - galley.size() / 2.0, galley, color);
+    super::focus_ring(ui, &response);
     if is_on {
         let bottom = bounds.bottom() - 1.0;
         ui.painter().hline(bounds.left() + 6.0..=bounds.right() - 6.0, bottom, (1.5, look.selection));

@@ -1,12 +1,14 @@
 //! Small pieces that several panels are made of.
 
 mod button;
+mod focus;
 mod icon;
 mod plate;
 mod strip;
 mod time_axis;
 
 pub(crate) use button::{action_button, icon_button, segment, tooltip_text, wide_action_button};
+pub(crate) use focus::focus_ring;
 pub(crate) use icon::{Icon, paint_icon};
 pub(crate) use plate::{letter_plate, read_out};
 pub(crate) use strip::{hint, strip};
