@@ -6,7 +6,7 @@ use super::super::commands::{Action, Command};
 use super::super::jobs::Slot;
 use super::super::theme::INSET;
 use super::super::view_models::{SnagState, rate_text, seconds};
-use super::super::widgets::{Icon, icon_button};
+use super::super::widgets::{Icon, icon_button, is_quick_click};
 use super::Scope;
 
 /// The bar along the bottom.
@@ -173,7 +173,10 @@ fn scrub_bar(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     }
     let knob = pos2(x(now), rail.center().y);
     ui.painter().circle(knob, 6.5, look.text, (2.0, look.panel));
-    if let Some(pointer) = response.interact_pointer_pos().filter(|_| response.is_pointer_button_down_on()) {
+    if let Some(pointer) = response
+        .interact_pointer_pos()
+        .filter(|_| response.is_pointer_button_down_on() || is_quick_click(ui, &response))
+    {
         let time = f64::from((pointer.x - rail.left()) / rail.width()) * duration;
         scope.out.push(Command::Scrub(time));
     }

@@ -251,7 +251,7 @@ fn draw_rows(
     let response = ui.interact(over_time, ui.scope_id().with("turn map"), Sense::click_and_drag());
     response.widget_info(|| WidgetInfo::labeled(Role::Canvas, true, "Turn map rows"));
     let pressed = ui.input(|input| input.pointer.primary_pressed());
-    if response.is_pointer_button_down_on()
+    if (response.is_pointer_button_down_on() || response.clicked())
         && pressed
         && let Some(pointer) = response.interact_pointer_pos()
     {
@@ -265,7 +265,8 @@ fn draw_rows(
         }
     }
     // Going to a snag moves time under the pointer: the press that chose it must not scrub as well.
-    if !(scope.pictures.press_is_on_mark && response.is_pointer_button_down_on()) {
+    let is_press = response.is_pointer_button_down_on() || response.clicked();
+    if !(scope.pictures.press_is_on_mark && is_press) {
         scrub_and_zoom(ui, &response, over_time, axis, clip, false, scope.out);
     }
     if let Some(pointer) = response.hover_pos() {

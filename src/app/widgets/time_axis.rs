@@ -46,6 +46,11 @@ pub(crate) fn playhead(painter: &Painter, look: &Look, axis: &TimeAxis, time_sec
     }
 }
 
+/// A click whose press and release both came since the last frame: it never shows as a button held down.
+pub(crate) fn is_quick_click(ui: &Ui, response: &Response) -> bool {
+    response.clicked() && ui.input(|input| input.pointer.primary_pressed())
+}
+
 /// The gestures of every chart over time: dragging scrubs, the middle button or Shift pans, the wheel zooms.
 pub(crate) fn scrub_and_zoom(
     ui: &Ui,
@@ -63,8 +68,8 @@ pub(crate) fn scrub_and_zoom(
     if pans {
         let secs = -f64::from(response.drag_delta().x / axis.span.span().max(1.0)) * axis.window.span();
         out.push(Command::ShowTime(axis.window.pan(secs, duration)));
-    } else if response.is_pointer_button_down_on()
-        && ui.input(|input| input.pointer.primary_down())
+    } else if (response.is_pointer_button_down_on() && ui.input(|input| input.pointer.primary_down())
+        || is_quick_click(ui, response))
         && !shift
         && let Some(pointer) = response.interact_pointer_pos()
     {
