@@ -109,7 +109,7 @@ impl HeatScale {
 
 /// The largest value a code can hold, and the value from which on codes grow like a logarithm.
 const MOST: f32 = 20_000.0;
-const KNEE: f32 = 1.0;
+const KNEE: f32 = 0.25;
 
 fn code(value: f32) -> u8 {
     if value.is_nan() || value <= 0.0 {
