@@ -5,4 +5,4 @@ mod mirror;
 mod scene_file;
 
 pub use error::SceneError;
-pub use scene_file::{SceneFile, from_text, read, write};
+pub use scene_file::{SceneFile, from_text, read, to_text, write};

@@ -200,7 +200,11 @@ fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
     }
 }
 
-fn to_text(
+/// The text that [`write`] writes; `path` is where it will stand.
+///
+/// # Errors
+/// When a value can't be said in RON.
+pub fn to_text(
     path: &Path,
     document: &Document,
     label: &dyn Fn(usize, usize) -> String,
