@@ -15,6 +15,7 @@ use turnwright::rotor::{Axis, Rotor};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use crate::gltf::{Raw, open, outside_files, whole};
+use crate::gltf_broken;
 use crate::support::{assert_close, list};
 
 /// Where written files go for the validator, and the list of them: source and result, one pair a line.
@@ -233,6 +234,35 @@ fn a_shared_sampler_stays_shared_where_both_joints_change_alike() {
     let output = gltf::write(&document, &[(0, &clips[0], &unlike)], "x").unwrap();
     let (_, again, _) = gltf::read(&output.bytes, "again.glb", &no_files).unwrap();
     assert_eq!(again[0], unlike);
+}
+
+#[test]
+fn changed_keys_follow_the_sign_of_the_key_before_and_others_stay() {
+    let (document, clips) = gltf_broken::read(&gltf_broken::small_glb()).unwrap();
+    let clip = &clips[0];
+    let joint = (0..clip.joints.len()).find(|&joint| clip.rotation(joint).is_some()).unwrap();
+    let track = clip.rotation(joint).unwrap();
+    // The last stored key is opposite to what is put before it; it is not touched.
+    let last = track.keys[2];
+    let first = track.keys[0];
+    let near_first = (first * Axis::X.rotor(0.1)).normalize().scale(-1.0);
+    let after = clip.with_rotation(joint, track.with_keys(&[(1, near_first)]));
+    let output = gltf::write(&document, &[(0, clip, &after)], "signs").unwrap();
+    let (_, again) = gltf_broken::read(&output.bytes).unwrap();
+    let keys = &again[0].rotation(joint).unwrap().keys;
+    assert_eq!((keys[0], keys[2]), (first, last));
+    assert_eq!(keys[1], rounded(near_first.scale(-1.0)));
+
+    // New times: all keys are new, and run on with one sign.
+    let secs = [0.0, 0.25, 0.5, 1.0];
+    let turned = |angle: f64, sign: f64| Axis::Z.rotor(angle).scale(sign);
+    let new = vec![turned(0.1, 1.0), turned(0.4, -1.0), turned(0.7, -1.0), turned(1.0, 1.0)];
+    let track = RotationTrack::from_rotors(Times::Listed(secs.into()), new.clone());
+    let after = clip.with_rotation(joint, RotationTrack { keys: new.into(), ..track });
+    let output = gltf::write(&document, &[(0, clip, &after)], "signs").unwrap();
+    let (_, again) = gltf_broken::read(&output.bytes).unwrap();
+    let keys = &again[0].rotation(joint).unwrap().keys;
+    assert!(keys.windows(2).all(|pair| pair[0].dot(pair[1]) > 0.9), "{keys:?}");
 }
 
 #[test]

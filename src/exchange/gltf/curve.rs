@@ -89,6 +89,30 @@ impl Curve {
         }
     }
 
+    /// Gives keys of turns that differ from those of `old` the sign of the key before them, so that a player that does
+    /// not look at signs goes the short way too. Keys that did not change keep every bit; with other times all keys are
+    /// new. Signs of smooth keys choose their path and stay; where keys are held, signs mean nothing.
+    pub(super) fn unroll(&mut self, old: Option<&Self>) {
+        if self.kind != "VEC4" || self.interpolation != Interpolation::Linear {
+            return;
+        }
+        let old = old.filter(|old| old.interpolation == self.interpolation && self.has_times_of(old));
+        for key in 1..self.count {
+            let at = 4 * key;
+            let is_old = |old: &Self| bits(&old.values[at..at + 4]).eq(bits(&self.values[at..at + 4]));
+            if old.is_some_and(is_old) {
+                continue;
+            }
+            let (before, own) = self.values[at - 4..at + 4].split_at_mut(4);
+            let dot: f32 = before.iter().zip(&*own).map(|(a, b)| a * b).sum();
+            if dot < 0.0 {
+                for number in own {
+                    *number = -*number;
+                }
+            }
+        }
+    }
+
     /// Whether both would be written with the very same bits.
     pub(super) fn is_same(&self, other: &Self) -> bool {
         self.interpolation == other.interpolation

@@ -36,7 +36,8 @@ pub struct Output {
 ///
 /// Tracks that did not change keep their samplers. For those that did, new accessors and views are added behind the
 /// old data, which stays. Numbers of unchanged keys stay bit for bit, and so do all other members and bytes: with no
-/// change at all the output is the input. Key signs are written as they are. `stem` is the target's file name without
+/// change at all the output is the input. Keys that changed get the sign of the key before them, where the short way is gone
+/// between them. `stem` is the target's file name without
 /// ending; it names the buffer that a `.gltf` writes beside itself.
 ///
 /// # Errors
@@ -134,7 +135,7 @@ impl<'a> Writer<'a> {
             for part in [Part::Translation, Part::Rotation, Part::Scale] {
                 let [old, new] = [before, after].map(|clip| curve_of(&clip.joints[joint], part));
                 let binding = animation.bindings.iter().find(|own| own.joint == joint && own.part == part);
-                let Some(curve) = new else {
+                let Some(mut curve) = new else {
                     if old.is_some() {
                         let label = self.document.skeleton.label(joint);
                         let text = format!(
@@ -148,6 +149,7 @@ impl<'a> Writer<'a> {
                 if curve.secs.is_empty() || old.as_ref().is_some_and(|old| old.is_same(&curve)) {
                     continue;
                 }
+                curve.unroll(old.as_ref());
                 let keeps_times = old.is_some_and(|old| old.has_times_of(&curve))
                     && binding.is_some_and(|binding| !binding.is_trimmed);
                 changes.push(Change { binding: binding.copied(), joint, part, curve, keeps_times });
