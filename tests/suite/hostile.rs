@@ -3,6 +3,7 @@
 //!
 //! The work runs in a process of its own, so that its memory is not that of the tests beside it, and a hang can be told.
 
+use std::io::Write as _;
 use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::path::{Path, PathBuf};
 use std::process::{Command, Stdio};
@@ -373,6 +374,100 @@ fn work(first: usize, last: usize) {
     });
     assert_eq!(n_failed, 0, "files failed");
     assert!(n_read * 20 > last - first, "too few are still readable to say anything: {n_read}");
+}
+
+/// Large files that ask for far more memory than they have bytes.
+fn large_files() -> Vec<(&'static str, Vec<u8>)> {
+    const SIZE: usize = 6 << 20;
+    let repeated = |before: &str, part: &str, after: &str| {
+        let mut text = String::with_capacity(before.len() + SIZE + part.len() + after.len());
+        text.push_str(before);
+        while text.len() < SIZE {
+            text.push_str(part);
+        }
+        text.push_str(after);
+        text.into_bytes()
+    };
+    let asset = "{\"asset\":{\"version\":\"2.0\"},";
+    let json = |before: &str, part: &str, after: &str| repeated(&format!("{asset}{before}"), part, after);
+    let hierarchy = BVH.split("MOTION").next().unwrap_or_default();
+    vec![
+        ("children.gltf", json("\"nodes\":[{\"children\":[", "0,", "0]}]}")),
+        ("nodes.gltf", json("\"nodes\":[", "{},", "{}]}")),
+        ("animations.gltf", json("\"nodes\":[{}],\"animations\":[", "{},", "{}]}")),
+        ("accessors.gltf", json("\"accessors\":[", "[],", "[]]}")),
+        ("extras.gltf", json("\"extras\":[", "0,", "0]}")),
+        ("deep.gltf", json("\"nodes\":", "[", "]")),
+        ("deep_extras.gltf", json("\"extras\":", "{\"a\":", "}")),
+        ("text.gltf", json("\"nodes\":[{\"name\":\"", "\\u00e9", "\"}]}")),
+        ("joints.bvh", repeated("HIERARCHY\nROOT a {", "JOINT b { OFFSET 0 0 0 ", "")),
+        ("siblings.bvh", repeated("HIERARCHY\nROOT a {", "JOINT b { OFFSET 0 0 0 }\n", "}")),
+        ("channels.bvh", repeated("HIERARCHY\nROOT a { CHANNELS 4000000000 ", "Xrotation ", "}")),
+        (
+            "frames.bvh",
+            repeated(&format!("{hierarchy}MOTION\nFrames: 4000000000\nFrame Time: 0.01\n"), "0.25 ", ""),
+        ),
+        ("comments.bvh", repeated("HIERARCHY\n", "# x\n", "")),
+        ("header.csv", repeated("time", ",", "\n")),
+        ("row.csv", repeated("time,a.yz\n0", ",", "\n")),
+        ("bones.csv", repeated("", "# joint a parent b offset 0 0 0\n", "time,a.yz\n")),
+        ("quotes.csv", repeated("time,\"", "\"\"", "\n")),
+        ("open.ron", repeated("", "(", "")),
+        (
+            "list.ron",
+            repeated("(turnwright_scene: 1, sources: [", "(path: \"\", sha256: \"\"),", "], clips: [])"),
+        ),
+    ]
+}
+
+/// Opens the large file of a number, alone in its process.
+#[expect(clippy::print_stdout, reason = "the parent process reads it")]
+fn open_large(number: usize) {
+    let (name, bytes) = large_files().swap_remove(number);
+    let most = 8 * bytes.len() as u64 + SPARE_BYTES;
+    // 5 sets the peak back to what is used now.
+    let reset = std::fs::OpenOptions::new().write(true).open("/proc/self/clear_refs");
+    let is_reset = reset.and_then(|mut file| file.write_all(b"5")).is_ok();
+    let start_bytes = peak_bytes().filter(|_| is_reset);
+    let started = Instant::now();
+    let is_read = match name.strip_suffix(".ron") {
+        Some(_) => {
+            std::str::from_utf8(&bytes).is_ok_and(|text| ron::from_text(Path::new(name), text).is_ok())
+        }
+        None => open_bytes(Path::new(name), bytes, &OpenOptions::default()).is_ok(),
+    };
+    let used = peak_bytes().zip(start_bytes).map_or(0, |(peak, start)| peak - start);
+    println!(
+        "{name} is read: {is_read}, {} MB of {}, {:.1} s",
+        used >> 20,
+        most >> 20,
+        started.elapsed().as_secs_f64()
+    );
+    assert!(used <= most, "{name} took {} MB", used >> 20);
+    assert!(started.elapsed() < LONGEST, "{name} took {:?}", started.elapsed());
+}
+
+#[test]
+fn large_files_take_no_more_memory_than_eight_times_their_size_and_64_mb() {
+    if let Ok(task) = std::env::var(TASK) {
+        return open_large(task.parse().expect("a number"));
+    }
+    for number in 0..large_files().len() {
+        let output = Command::new(std::env::current_exe().expect("this program"))
+            .args([
+                "--exact",
+                "hostile::large_files_take_no_more_memory_than_eight_times_their_size_and_64_mb",
+            ])
+            .args(["--nocapture"])
+            .env("RUST_BACKTRACE", "0")
+            .env(TASK, number.to_string())
+            .output()
+            .expect("this program starts again");
+        let text = String::from_utf8_lossy(&output.stdout);
+        let line = text.lines().find(|line| line.contains(" is read: "));
+        println!("{}", line.unwrap_or("nothing was told"));
+        assert!(output.status.success(), "{number}: {text}\n{}", String::from_utf8_lossy(&output.stderr));
+    }
 }
 
 #[test]

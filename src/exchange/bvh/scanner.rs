@@ -71,6 +71,11 @@ impl<'a> Scanner<'a> {
         self.bytes.get(self.pos).copied()
     }
 
+    /// Whether this text comes next.
+    pub(super) fn is_at(&self, text: &[u8]) -> bool {
+        self.bytes.get(self.pos..).is_some_and(|rest| rest.starts_with(text))
+    }
+
     pub(super) fn advance(&mut self, count: usize) {
         self.pos = self.pos.saturating_add(count).min(self.bytes.len());
     }

@@ -285,11 +285,10 @@ pub(super) fn skip_comments(scanner: &mut Scanner<'_>, notes: &mut Vec<Note>) {
     loop {
         scanner.skip_blanks();
         let start = scanner.pos();
-        let line = scanner.rest_of_line();
-        if !(line.starts_with(b"#") || line.starts_with(b"//")) {
-            scanner.go_to(start);
+        if !scanner.is_at(b"#") && !scanner.is_at(b"//") {
             break;
         }
+        scanner.rest_of_line();
         first.get_or_insert(start);
     }
     if let Some(start) = first {

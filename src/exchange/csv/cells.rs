@@ -8,6 +8,9 @@ use crate::exchange::decimal::short;
 
 use super::error::CsvError;
 
+/// Cells of a row that are read: some thousand joints with all that a row can say of each.
+const MAX_CELLS: usize = 100_000;
+
 /// The content of a cell: without the quotes and blanks around it.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub(super) struct Cell {
@@ -75,7 +78,11 @@ impl<'a> Records<'a> {
         loop {
             self.cell()?;
             match self.peek() {
-                Some(b',') => self.advance(1),
+                Some(b',') if self.cells.len() < MAX_CELLS => self.advance(1),
+                Some(b',') => {
+                    let expected = format!("at most {MAX_CELLS} cells in a row");
+                    return Err(CsvError::unexpected(self.line, expected, "more"));
+                }
                 _ => break,
             }
         }

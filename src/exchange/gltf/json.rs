@@ -12,7 +12,7 @@ use crate::exchange::decimal::is_measure;
 use super::error::GltfError;
 
 /// The members that animation has to do with. The writer changes the text itself, so all others may stay text.
-const READ_MEMBERS: [&str; 9] = [
+pub(super) const READ_MEMBERS: [&str; 9] = [
     "accessors",
     "animations",
     "asset",

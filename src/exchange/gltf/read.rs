@@ -4,6 +4,7 @@ use std::borrow::Cow;
 use std::collections::BTreeSet;
 use std::sync::Arc;
 
+use serde::de::IgnoredAny;
 use serde_json::Value;
 
 use crate::clip::{Clip, FrameGrid, JointTracks};
@@ -17,6 +18,7 @@ use super::document::{Animation, Binding, Document};
 use super::error::GltfError;
 use super::json::{self, At};
 use super::nodes;
+use super::patch::Patch;
 use super::rate;
 use super::tracks::{Track, Tracks};
 
@@ -38,6 +40,9 @@ const HARMLESS: [&str; 12] = [
 
 /// Joint tracks of all clips together, beyond which a document is taken for hostile unless it is itself that large.
 const SPARE_TRACKS: usize = 2 << 20;
+
+/// JSON values that a small document may have, whatever its size.
+const SPARE_VALUES: usize = 400_000;
 
 /// Reads a `.glb` or `.gltf`: the document, a clip for each of its animations in order (so that a clip's place in the
 /// list is its animation's index), and what was odd. A document without animation gives no clip.
@@ -143,12 +148,15 @@ fn parse(json: &[u8]) -> Result<Value, GltfError> {
     let padding = json.iter().rev().take_while(|byte| **byte == 0).count();
     let text = &json[..json.len() - padding];
     // The parser does not look into what it passes over; the writer does.
-    if let Err(error) = std::str::from_utf8(text) {
-        let before = &text[..error.valid_up_to()];
-        let line = before.split(|&byte| byte == b'\n').count();
-        let column = before.rsplit(|&byte| byte == b'\n').next().map_or(0, <[u8]>::len) + 1;
-        let found = format!("the byte {:#04x}", text[before.len()]);
-        return Err(GltfError::unlike(format!("JSON line {line} column {column}"), "UTF-8 text", found));
+    match std::str::from_utf8(text) {
+        Ok(text) => refuse_dust(text)?,
+        Err(error) => {
+            let before = &text[..error.valid_up_to()];
+            let line = before.split(|&byte| byte == b'\n').count();
+            let column = before.rsplit(|&byte| byte == b'\n').next().map_or(0, <[u8]>::len) + 1;
+            let found = format!("the byte {:#04x}", text[before.len()]);
+            return Err(GltfError::unlike(format!("JSON line {line} column {column}"), "UTF-8 text", found));
+        }
     }
     json::parse(text).map_err(|error| {
         let place = format!("JSON line {} column {}", error.line(), error.column());
@@ -156,6 +164,26 @@ fn parse(json: &[u8]) -> Result<Value, GltfError> {
         let found = full.rsplit_once(" at line ").map_or(full.as_str(), |(message, _)| message);
         GltfError::unlike(place, "valid JSON", found)
     })
+}
+
+/// A value of two bytes takes a hundred once it is read: a document may not be made of such dust. Only what is kept
+/// counts, and honest values have names.
+fn refuse_dust(text: &str) -> Result<(), GltfError> {
+    let n_values = |text: &str| memchr::memchr_iter(b',', text.as_bytes()).count();
+    let most = (text.len() / 16).saturating_add(SPARE_VALUES);
+    // What is no JSON is told with its place by the parser.
+    if n_values(text) <= most || serde_json::from_str::<IgnoredAny>(text).is_err() {
+        return Ok(());
+    }
+    let patch = Patch::new(text);
+    let root = patch.root();
+    let kept = json::READ_MEMBERS.iter().filter_map(|member| patch.member(&root, member));
+    let found: usize = kept.map(|range| n_values(&text[range])).sum();
+    if found <= most {
+        return Ok(());
+    }
+    let expected = format!("at most {most} values about nodes and animation in a document of this size");
+    Err(GltfError::unlike("JSON", expected, found.to_string()))
 }
 
 fn check_asset(root: &At<'_>, notes: &mut Vec<Note>) -> Result<(), GltfError> {
