@@ -99,10 +99,9 @@ impl RotationTrack {
     /// A track of a file's angles, a triple in degrees for each key, with slerp between.
     /// Angles that are not finite give rotors that are not.
     pub fn from_angles(times: Times, angles: FileAngles) -> Self {
-        let keys: Arc<[Rotor]> = angles.degrees.iter().map(|&degrees| angles.rotor(degrees)).collect();
         Self {
             times,
-            keys: aligned(&keys),
+            keys: aligned(angles.degrees.iter().map(|&degrees| angles.rotor(degrees))),
             paths: Paths::Every(PathKind::Slerp),
             tangents: None,
             stored: Stored::Angles(angles),
@@ -111,11 +110,9 @@ impl RotationTrack {
 
     /// A track of plane angles in degrees, a triple yz, zx, xy for each key, with slerp between.
     pub fn from_plane_angles(times: Times, degrees: Arc<[[f64; 3]]>) -> Self {
-        let keys: Arc<[Rotor]> =
-            degrees.iter().map(|&d| Rotor::from_plane_angles(Bivector::from_degrees(d))).collect();
         Self {
             times,
-            keys: aligned(&keys),
+            keys: aligned(degrees.iter().map(|&d| Rotor::from_plane_angles(Bivector::from_degrees(d)))),
             paths: Paths::Every(PathKind::Slerp),
             tangents: None,
             stored: Stored::PlaneAngles(degrees),
@@ -314,17 +311,16 @@ fn bits(rotor: Rotor) -> [u64; 4] {
 }
 
 /// Rotors made of angles have no sign of their own: each takes the one near the last finite one before it.
-fn aligned(keys: &[Rotor]) -> Arc<[Rotor]> {
+fn aligned(keys: impl Iterator<Item = Rotor>) -> Arc<[Rotor]> {
     let mut reference = Rotor::IDENTITY;
-    keys.iter()
-        .map(|key| {
-            let own = key.aligned_to(reference);
-            if own.is_finite() {
-                reference = own;
-            }
-            own
-        })
-        .collect()
+    keys.map(|key| {
+        let own = key.aligned_to(reference);
+        if own.is_finite() {
+            reference = own;
+        }
+        own
+    })
+    .collect()
 }
 
 /// Inner points of squad with the three-point (parabola) rate at the key.

@@ -16,6 +16,21 @@ const WHOLE_POWERS: [u64; 8] = [1, 10, 100, 1000, 10_000, 100_000, 1_000_000, 10
 /// The digit 0 in every byte.
 const ZEROS: u64 = 0x3030_3030_3030_3030;
 
+/// The text of every number of three digits, the first in the lowest byte.
+static THREE_DIGITS: [u32; 1000] = three_digits();
+
+#[expect(clippy::arithmetic_side_effects, clippy::indexing_slicing, reason = "reckoned when it is compiled")]
+const fn three_digits() -> [u32; 1000] {
+    let mut texts = [0; 1000];
+    let mut number = 0;
+    while number < 1000 {
+        let n = number as u32;
+        texts[number] = 0x30_3030 | (n / 100) | ((n / 10 % 10) << 8) | ((n % 10) << 16);
+        number += 1;
+    }
+    texts
+}
+
 /// Whether a number can be a length or a size: finite, and small enough that the products of a few still are, as 32-bit
 /// floats in part.
 pub(super) fn is_measure(value: f64) -> bool {
@@ -143,34 +158,66 @@ pub fn shorts(bytes: &[u8], from: usize, values: &mut Vec<f64>) -> Stretch {
 #[inline]
 pub fn push_six_decimals(value: f64, text: &mut Vec<u8>) {
     let scaled = value.abs() * 1e6;
-    // Cut, not rounded; what is left is exact.
-    let cut = scaled as u64;
+    // Cut, not rounded; what is left is exact. Signed, as 64-bit processors turn floats into those in one step.
+    let cut = scaled as i64;
     let left = scaled - cut as f64;
-    // The product may be off by half of its last bit. Only where that decides, and for numbers beyond eight digits, the
-    // long way is gone. Not a number is not below anything.
+    // The product may be off by half of its last bit: where that decides, the long way is gone. Not a number is not below
+    // anything.
     let is_sure = scaled < 99_999_999e6 && (left - 0.5).abs() > scaled * f64::EPSILON;
+    let units = (cut as u64).wrapping_add(u64::from(left > 0.5));
     if !is_sure {
         push_slowly(value, text);
-        return;
+    } else if units < 1_000_000_000 {
+        push_angle(value < 0.0 && units > 0, units as u32, text);
+    } else {
+        push_units(value < 0.0, units, text);
     }
-    let units = cut.wrapping_add(u64::from(left > 0.5));
+}
+
+/// Millionths below 1,000,000,000, as angles and lengths are: their digits three at a time from a table.
+#[inline]
+fn push_angle(is_negative: bool, units: u32, text: &mut Vec<u8>) {
+    let three = |number: u32| THREE_DIGITS.get(number as usize).copied().unwrap_or_default();
     let (whole, part) = (units / 1_000_000, units % 1_000_000);
-    let whole = eight_digits(whole);
+    let leading = u32::from(whole < 100).wrapping_add(u32::from(whole < 10));
+    let sign = usize::from(is_negative);
+    let point = sign.wrapping_add(3).wrapping_sub(leading as usize);
+    let first = u64::from(three(whole)).wrapping_shr(leading.wrapping_mul(8));
+    let last = u64::from(three(part / 1000)) << 8 | u64::from(three(part % 1000)) << 32;
+    push_words(sign, first, point, last, text);
+}
+
+/// Millionths of at most eight digits before the point.
+fn push_units(is_negative: bool, units: u64, text: &mut Vec<u8>) {
+    let whole = eight_digits(units / 1_000_000);
     // One digit at least stays of the whole.
     let leading = (whole.trailing_zeros() >> 3).min(7);
-    let n_whole = 8_u32.wrapping_sub(leading);
-    let whole = (whole | ZEROS).wrapping_shr(leading.wrapping_mul(8));
-    let part = (eight_digits(part.wrapping_mul(100)) | ZEROS) & 0xFFFF_FFFF_FFFF;
-    let point = u128::from(u64::from(b'.') | (part << 8));
-    let unsigned = u128::from(whole) | point.wrapping_shl(n_whole.wrapping_mul(8));
-    let is_negative = value < 0.0 && units > 0;
-    let sign = u32::from(is_negative);
-    let mark = u128::from(b'-').wrapping_mul(u128::from(sign));
-    let signed = unsigned.wrapping_shl(sign.wrapping_mul(8)) | mark;
-    let length = text.len().wrapping_add(n_whole.wrapping_add(sign).wrapping_add(7) as usize);
-    // All sixteen bytes in one step, and what is too many off again.
-    text.extend_from_slice(&signed.to_le_bytes());
-    text.truncate(length);
+    let first = (whole | ZEROS).wrapping_shr(leading.wrapping_mul(8));
+    let part = (eight_digits((units % 1_000_000).wrapping_mul(100)) | ZEROS) & 0xFFFF_FFFF_FFFF;
+    let sign = usize::from(is_negative);
+    let point = sign.wrapping_add(8).wrapping_sub(leading as usize);
+    push_words(sign, first, point, part << 8, text);
+}
+
+/// The text of the whole at `sign`, and that of a point and six decimals at `point`: words put over each other and over a
+/// minus, and what is too many taken off again.
+#[inline]
+fn push_words(sign: usize, whole: u64, point: usize, part: u64, text: &mut Vec<u8>) {
+    let start = text.len();
+    text.extend_from_slice(&[b'-'; 24]);
+    if let Some(own) = text.get_mut(start..).and_then(<[u8]>::first_chunk_mut::<24>) {
+        put(own, sign, whole);
+        put(own, point, u64::from(b'.') | part);
+    }
+    text.truncate(start.wrapping_add(point).wrapping_add(7));
+}
+
+/// Eight bytes at a place that is at most 16.
+#[inline]
+fn put(bytes: &mut [u8; 24], at: usize, word: u64) {
+    if let Some(place) = bytes.get_mut(at..at.wrapping_add(8)) {
+        place.copy_from_slice(&word.to_le_bytes());
+    }
 }
 
 /// The eight digits of a number below 100,000,000, a byte each from 0 to 9, the first in the lowest byte.

@@ -185,14 +185,14 @@ pub fn open_bytes(path: &Path, bytes: Vec<u8>, options: &OpenOptions) -> Result<
         }
         Format::Bvh => {
             let (document, clip, notes) =
-                bvh::read(&bytes, &name).map_err(|source| OpenError::Bvh { path: at(), source })?;
+                bvh::read(bytes, &name).map_err(|source| OpenError::Bvh { path: at(), source })?;
             (Origin::Bvh(Arc::new(document)), vec![clip], notes)
         }
         Format::Csv => {
             let companion = options.csv.hierarchy.is_none().then(|| companion_skeleton(path)).flatten();
             let hierarchy = options.csv.hierarchy.clone().or(companion);
             let csv_options = csv::CsvOptions { hierarchy, ..options.csv.clone() };
-            let (document, clip, notes) = csv::read(&bytes, &name, &csv_options)
+            let (document, clip, notes) = csv::read(bytes, &name, &csv_options)
                 .map_err(|source| OpenError::Csv { path: at(), source })?;
             (Origin::Csv(Arc::new(document)), vec![clip], notes)
         }

@@ -75,7 +75,7 @@ fn a_walk_in_two_formats_is_one_walk() {
         return;
     };
     let Some(path) = shared("data/bvh/walk01.bvh") else { return };
-    let (_, walk, _) = bvh::read(&disk::read(&path).expect("an existing file is read"), "walk01").unwrap();
+    let (_, walk, _) = bvh::read(disk::read(&path).expect("an existing file is read"), "walk01").unwrap();
     let options = csv::CsvOptions {
         hierarchy: Some(csv::hierarchy(&hierarchy).unwrap()),
         ..csv::CsvOptions::default()

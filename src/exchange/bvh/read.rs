@@ -1,9 +1,11 @@
 //! From the bytes of a BVH file to a clip.
 
+use std::borrow::Cow;
 use std::fmt;
 use std::sync::Arc;
 
 use glam::DVec3;
+use rayon::prelude::*;
 
 use crate::clip::{Clip, FileAngles, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
 use crate::exchange::Note;
@@ -22,7 +24,7 @@ const USUAL_FRAME_SECS: f64 = 1.0 / 30.0;
 #[derive(Clone)]
 pub struct Document {
     /// The file as it was.
-    pub(super) bytes: Arc<[u8]>,
+    pub(super) bytes: Arc<Vec<u8>>,
     /// The channels of each joint, in the order of a row's numbers.
     pub(super) channels: Vec<Vec<Channel>>,
     /// Where the motion part stands.
@@ -63,7 +65,7 @@ impl Document {
     }
 }
 
-/// Reads a BVH text. `name` becomes the clip's name.
+/// Reads a BVH text. `name` becomes the clip's name. Bytes that are handed over are kept, others are copied.
 ///
 /// Angles are degrees, applied in the order of the channels; frame `i` is at `i` × `Frame Time` as written. Positions
 /// stand in place of `OFFSET`; of a joint that lacks some of the three, the others stay those of `OFFSET`. Numbers that
@@ -72,7 +74,12 @@ impl Document {
 /// # Errors
 /// When the text is no BVH or can't be understood in one way only; with line and column, and in the motion part with
 /// frame and joint.
-pub fn read(bytes: &[u8], name: &str) -> Result<(Document, Clip, Vec<Note>), BvhError> {
+pub fn read<'b>(
+    bytes: impl Into<Cow<'b, [u8]>>,
+    name: &str,
+) -> Result<(Document, Clip, Vec<Note>), BvhError> {
+    let owned = Arc::new(bytes.into().into_owned());
+    let bytes = owned.as_slice();
     let mut notes = Vec::new();
     let body_start = if bytes.starts_with(b"\xEF\xBB\xBF") { 3 } else { 0 };
     let mut scanner = Scanner::new(bytes, body_start);
@@ -83,7 +90,7 @@ pub fn read(bytes: &[u8], name: &str) -> Result<(Document, Clip, Vec<Note>), Bvh
     let head = motion_head(&mut scanner, &mut notes)?;
     let rows_start = scanner.pos();
     let mut document = Document {
-        bytes: bytes.into(),
+        bytes: Arc::clone(&owned),
         channels: joints.iter().map(|joint| joint.channels.clone()).collect(),
         head,
         rows_start,
@@ -314,64 +321,18 @@ fn clip(
 ) -> Clip {
     let columns = document.columns();
     let times = Times::Even { step_secs, count: document.frames };
-    let rows = || values.chunks_exact(columns.max(1));
-    let mut tracks = Vec::with_capacity(joints.len());
-    for (joint, first) in joints.iter().zip(document.first_columns()) {
+    let tracks: Vec<Arc<JointTracks>> = joints
+        .par_iter()
+        .zip(document.first_columns())
+        .map(|(joint, first)| Arc::new(joint_tracks(joint, first, values, columns, &times)))
+        .collect();
+    for joint in joints {
         let turns = turns_of(&joint.channels);
         if turns.groups.len() > 3 {
             let axes: String = turns.axes().map(Axis::letter).collect();
             let text = format!("expected at most three turns, found {axes}: put together in this order");
             notes.push(Note::new(format!("joint {}", joint.name), text));
         }
-        let angles = |row: &[f64]| -> [f64; 3] {
-            std::array::from_fn(|i| {
-                turns.groups.get(i).map_or(0.0, |(_, columns)| group_sum(row, first, columns))
-            })
-        };
-        let rotation = match turns.order() {
-            _ if document.frames == 0 => None,
-            None => None,
-            Some(order) if turns.groups.len() <= 3 => {
-                let degrees: Arc<[[f64; 3]]> = rows().map(angles).collect();
-                let axes = turns.axes().collect();
-                Some(RotationTrack::from_angles(times.clone(), FileAngles { axes, order, degrees }))
-            }
-            Some(_) => {
-                let mut before = Rotor::IDENTITY;
-                let mut key = |row: &[f64]| {
-                    let degrees: Vec<f64> =
-                        turns.groups.iter().map(|(_, c)| group_sum(row, first, c)).collect();
-                    let rotor = turns.rotor(&degrees).aligned_to(before);
-                    if rotor.is_finite() {
-                        before = rotor;
-                    }
-                    rotor
-                };
-                let keys: Arc<[Rotor]> = rows().map(&mut key).collect();
-                Some(RotationTrack::from_rotors(times.clone(), keys))
-            }
-        };
-        let places: Vec<(usize, usize)> = joint
-            .channels
-            .iter()
-            .enumerate()
-            .filter_map(|(column, channel)| match channel {
-                Channel::Position(axis) => Some((axis.index(), first + column)),
-                Channel::Rotation(_) | Channel::Size => None,
-            })
-            .collect();
-        let place = |row: &[f64]| {
-            let mut place = joint.offset;
-            for &(axis, column) in &places {
-                place[axis] = row[column];
-            }
-            DVec3::from_array(place)
-        };
-        let translation = (!places.is_empty() && document.frames > 0).then(|| {
-            let keys: Arc<[DVec3]> = rows().map(place).collect();
-            VectorTrack::straight(times.clone(), keys)
-        });
-        tracks.push(Arc::new(JointTracks { rotation, translation, scale: None }));
     }
     let skeleton_joints = joints
         .iter()
@@ -394,6 +355,69 @@ fn clip(
         duration_secs: times.span().map_or(0.0, |(_, last)| last),
         grid: FrameGrid { times, rate: 1.0 / step_secs },
     }
+}
+
+/// What the columns of a joint, from `first` on, say of it.
+fn joint_tracks(
+    joint: &JointSyntax,
+    first: usize,
+    values: &[f64],
+    columns: usize,
+    times: &Times,
+) -> JointTracks {
+    let rows = || values.chunks_exact(columns.max(1));
+    let turns = turns_of(&joint.channels);
+    let [a, b, c]: [&[usize]; 3] =
+        std::array::from_fn(|i| turns.groups.get(i).map_or(&[][..], |(_, columns)| columns));
+    let angle = |row: &[f64], columns: &[usize]| match columns {
+        [] => 0.0,
+        [one] => row[first + one],
+        several => group_sum(row, first, several),
+    };
+    let angles = |row: &[f64]| [angle(row, a), angle(row, b), angle(row, c)];
+    let rotation = match turns.order() {
+        _ if times.is_empty() => None,
+        None => None,
+        Some(order) if turns.groups.len() <= 3 => {
+            let degrees: Arc<[[f64; 3]]> = rows().map(angles).collect();
+            let axes = turns.axes().collect();
+            Some(RotationTrack::from_angles(times.clone(), FileAngles { axes, order, degrees }))
+        }
+        Some(_) => {
+            let mut before = Rotor::IDENTITY;
+            let mut key = |row: &[f64]| {
+                let degrees: Vec<f64> = turns.groups.iter().map(|(_, c)| group_sum(row, first, c)).collect();
+                let rotor = turns.rotor(&degrees).aligned_to(before);
+                if rotor.is_finite() {
+                    before = rotor;
+                }
+                rotor
+            };
+            let keys: Arc<[Rotor]> = rows().map(&mut key).collect();
+            Some(RotationTrack::from_rotors(times.clone(), keys))
+        }
+    };
+    let places: Vec<(usize, usize)> = joint
+        .channels
+        .iter()
+        .enumerate()
+        .filter_map(|(column, channel)| match channel {
+            Channel::Position(axis) => Some((axis.index(), first + column)),
+            Channel::Rotation(_) | Channel::Size => None,
+        })
+        .collect();
+    let place = |row: &[f64]| {
+        let mut place = joint.offset;
+        for &(axis, column) in &places {
+            place[axis] = row[column];
+        }
+        DVec3::from_array(place)
+    };
+    let translation = (!places.is_empty() && !times.is_empty()).then(|| {
+        let keys: Arc<[DVec3]> = rows().map(place).collect();
+        VectorTrack::straight(times.clone(), keys)
+    });
+    JointTracks { rotation, translation, scale: None }
 }
 
 /// The turns that a joint's channels make; columns count from its first channel.

@@ -1,5 +1,6 @@
 //! From the bytes of a CSV file to a clip.
 
+use std::borrow::Cow;
 use std::fmt;
 use std::sync::Arc;
 
@@ -27,7 +28,7 @@ const LATEST_START_SECS: f64 = 86_400.0;
 #[derive(Clone)]
 pub struct Document {
     /// The file as it was.
-    pub(super) bytes: Arc<[u8]>,
+    pub(super) bytes: Arc<Vec<u8>>,
     /// What the columns are for; joints as indices in the skeleton.
     pub(super) columns: Columns,
     /// First byte after the header.
@@ -68,7 +69,13 @@ fn turns_of(roles: &[Role], joint: usize) -> Turns {
 /// # Errors
 /// When the header is not understood, a cell is no number, a row is short or long, or times do not rise; with line and
 /// column.
-pub fn read(bytes: &[u8], name: &str, options: &CsvOptions) -> Result<(Document, Clip, Vec<Note>), CsvError> {
+pub fn read<'b>(
+    bytes: impl Into<Cow<'b, [u8]>>,
+    name: &str,
+    options: &CsvOptions,
+) -> Result<(Document, Clip, Vec<Note>), CsvError> {
+    let owned = Arc::new(bytes.into().into_owned());
+    let bytes = owned.as_slice();
     if u32::try_from(bytes.len()).is_err() {
         return Err(CsvError { line: 1, column: None, kind: CsvErrorKind::TooLarge(bytes.len()) });
     }
@@ -117,7 +124,7 @@ pub fn read(bytes: &[u8], name: &str, options: &CsvOptions) -> Result<(Document,
     if rows == 0 {
         notes.push(Note::new("end of file", "expected rows, found none: a skeleton without a clip"));
     }
-    let document = Document { bytes: bytes.into(), columns, rows_start, rows, start_secs };
+    let document = Document { bytes: Arc::clone(&owned), columns, rows_start, rows, start_secs };
     let clip = clip(&document, skeleton, &values, width, times, name);
     Ok((document, clip, notes))
 }
