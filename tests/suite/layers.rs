@@ -3,6 +3,8 @@
 use std::fs;
 use std::path::{Path, PathBuf};
 
+use turnwright::exchange::disk;
+
 /// Lowest first.
 const LAYERS: [&str; 12] = [
     "rotor", "skeleton", "clip", "snag", "mend", "scene", "exchange", "raster", "proof", "demo", "cli", "app",
@@ -10,19 +12,26 @@ const LAYERS: [&str; 12] = [
 
 fn each_source_line(folder: &Path, seen: &mut dyn FnMut(&str, &str)) -> usize {
     let mut lines = 0;
-    let mut paths: Vec<PathBuf> = fs::read_dir(folder).unwrap().map(|entry| entry.unwrap().path()).collect();
+    let entries = fs::read_dir(folder).unwrap_or_else(|error| panic!("{}: {error}", folder.display()));
+    let mut paths: Vec<PathBuf> =
+        entries.map(|entry| entry.expect("a folder lists its files").path()).collect();
     paths.sort();
     for path in paths {
         if path.is_dir() {
             lines += each_source_line(&path, seen);
         } else if path.extension().is_some_and(|extension| extension == "rs") {
-            for (number, line) in fs::read_to_string(&path).unwrap().lines().enumerate() {
+            for (number, line) in text(&path).lines().enumerate() {
                 lines += 1;
                 seen(&format!("{}:{}", path.display(), number + 1), line);
             }
         }
     }
     lines
+}
+
+fn text(path: &Path) -> String {
+    let bytes = disk::read(path).expect("a source file can be read");
+    String::from_utf8(bytes).expect("a source file is text")
 }
 
 /// Whether a line of code names a module of the crate: `crate::cli`, but not `crate::clip`.
