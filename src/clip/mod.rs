@@ -3,6 +3,7 @@
 //! Knows nothing of files or screens. A clip read from a file is never changed; edits make a new one that shares
 //! what they did not touch.
 
+mod bulk;
 mod continuity;
 mod resample;
 mod rotation_track;
@@ -10,6 +11,7 @@ mod take;
 mod times;
 mod vector_track;
 
+pub use bulk::turns_between;
 pub use continuity::continuous_angles;
 pub use resample::{cut, resampled};
 pub use rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};

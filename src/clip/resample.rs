@@ -110,10 +110,10 @@ fn rotation_at(track: &RotationTrack, times: &Times, at: &[f64]) -> RotationTrac
         }
         None => None,
     };
-    let keys: Vec<Rotor> = at
-        .iter()
-        .map(|&secs| key_at(secs).map_or_else(|| track.at(secs), |key| track.sound_key(key)))
-        .collect();
+    // A time that is a key but for rounding becomes that key's own.
+    let snapped: Vec<f64> =
+        at.iter().map(|&secs| key_at(secs).map_or(secs, |key| track.times.at(key))).collect();
+    let keys = track.at_all(&snapped);
     let is_held =
         (0..track.keys.len().saturating_sub(1)).all(|segment| track.paths.of(segment) == PathKind::Hold);
     let paths = Paths::Every(if is_held && track.keys.len() > 1 { PathKind::Hold } else { PathKind::Slerp });

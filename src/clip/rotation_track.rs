@@ -205,25 +205,31 @@ impl RotationTrack {
         (value.scale(factor), rate)
     }
 
-    /// Squad between two keys with inner points from their four neighbours; at the ends the key is its own inner point.
     fn squad(&self, key: usize, share: f64) -> Rotor {
+        let [a, inner_a, inner_b, b] = self.squad_points(key, |key| self.sound_key(key));
+        squad(a, inner_a, inner_b, b, share).normalize()
+    }
+
+    /// The four points of squad between two keys, with inner points from their four neighbours; at the ends the key is its own
+    /// inner point.
+    pub(super) fn squad_points(&self, key: usize, sound: impl Fn(usize) -> Rotor) -> [Rotor; 4] {
         let last = self.keys.len() - 1;
-        let a = self.sound_key(key);
-        let b = self.sound_key(key + 1).aligned_to(a);
+        let a = sound(key);
+        let b = sound(key + 1).aligned_to(a);
         let secs = |from: usize| self.times.at(from + 1) - self.times.at(from);
         let inner_a = if key == 0 {
             a
         } else {
-            let before = self.sound_key(key - 1).aligned_to(a);
+            let before = sound(key - 1).aligned_to(a);
             inner_points(before, a, b, secs(key - 1), secs(key))[1]
         };
         let inner_b = if key + 1 == last {
             b
         } else {
-            let after = self.sound_key(key + 2).aligned_to(b);
+            let after = sound(key + 2).aligned_to(b);
             inner_points(a, b, after, secs(key), secs(key + 1))[0]
         };
-        squad(a, inner_a, inner_b, b, share).normalize()
+        [a, inner_a, inner_b, b]
     }
 
     /// This track with other rotors at some keys, `(key, rotor)`. All other keys keep their numbers. The file's own

@@ -227,15 +227,20 @@ pub(super) fn turn_at(clip: &Clip, joint: usize, time_secs: f64) -> Rotor {
 
 fn measure_joint(clips: [&Clip; 2], pair: [usize; 2], rests: [[Rotor; 2]; 2], times: &[f64]) -> JointMeasure {
     let same_rest = rests[0] == rests[1];
-    let turn = |side: usize, time_secs: f64| {
-        let local = turn_at(clips[side], pair[side], time_secs);
-        let [above, own] = rests[side];
-        if same_rest { local } else { above * local * own.reverse() * above.reverse() }
-    };
+    let turns = [0, 1].map(|side| {
+        let mut turns = clips[side].rotations_at(pair[side], times);
+        if !same_rest {
+            let [above, own] = rests[side];
+            for turn in &mut turns {
+                *turn = above * *turn * own.reverse() * above.reverse();
+            }
+        }
+        turns
+    });
     let mut change = Peak::default();
     let mut changes = Vec::with_capacity(times.len());
-    for &time in times {
-        let turned = turn(0, time).turn_to(turn(1, time));
+    for (&time, (before, after)) in times.iter().zip(turns[0].iter().zip(&turns[1])) {
+        let turned = before.turn_to(*after);
         if turned > change.value {
             change = Peak { value: turned, at_secs: time };
         }

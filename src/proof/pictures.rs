@@ -1,6 +1,6 @@
 //! The pictures of a proof sheet: turn maps before and after, and the skeleton where it changed most.
 
-use crate::clip::Clip;
+use crate::clip::{Clip, turns_between};
 use crate::raster::{
     Camera, Canvas, Figure, FigureStyle, Girth, Image, ImageError, MapRow, Moment, SnagMark, StripStyle,
     Theme, TurnMap, chart_canvas, compose, contact_strip, draw_turn_map, full_scale, limbs_of_skeleton,
@@ -100,19 +100,11 @@ fn turn_maps(clips: [&Clip; 2], measurement: &Measurement, snags: [&[FoundSnag];
 fn turn_rates(clip: &Clip, joint: usize, frames: &Clip) -> Vec<f32> {
     let count = frames.grid.count();
     let Some(track) = clip.rotation(joint) else { return vec![0.0; count] };
-    let mut last = track.at(frames.grid.time(0));
-    (0..count)
-        .map(|frame| {
-            if frame == 0 {
-                return 0.0;
-            }
-            let now = track.at(frames.grid.time(frame));
-            let secs = frames.grid.time(frame) - frames.grid.time(frame - 1);
-            let rate = last.turn_to(now).to_degrees() / secs;
-            last = now;
-            rate as f32
-        })
-        .collect()
+    let times: Vec<f64> = (0..count).map(|frame| frames.grid.time(frame)).collect();
+    let turns = turns_between(&track.at_all(&times));
+    let rates =
+        turns.iter().zip(times.windows(2)).map(|(turn, secs)| turn.to_degrees() / (secs[1] - secs[0]));
+    std::iter::once(0.0).chain(rates.map(|rate| rate as f32)).take(count).collect()
 }
 
 fn draw_maps(maps: &[TurnMap; 2], theme: &Theme) -> Image {

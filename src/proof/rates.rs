@@ -39,14 +39,14 @@ pub fn rates(track: &RotationTrack, clip: &Clip) -> RateMeasure {
     let mut measure = RateMeasure::default();
     let count = clip.grid.count();
     let (mut squares, mut jerks) = (0.0, 0_usize);
-    let mut last_rotor = track.at(clip.grid.time(0));
+    let times: Vec<f64> = (0..count).map(|frame| clip.grid.time(frame)).collect();
+    let rotors = track.at_all(&times);
     // Time of the middle of the last step, and the rate there; then the same for accelerations.
     let mut last_rate: Option<(f64, Bivector)> = None;
     let mut last_acceleration: Option<(f64, Bivector)> = None;
     for frame in 1..count {
-        let (start, end) = (clip.grid.time(frame - 1), clip.grid.time(frame));
-        let rotor = track.at(end);
-        let rate = (last_rotor.reverse() * rotor).plane_angles() / (end - start);
+        let (start, end) = (times[frame - 1], times[frame]);
+        let rate = (rotors[frame - 1].reverse() * rotors[frame]).plane_angles() / (end - start);
         let middle = 0.5 * (start + end);
         measure.fastest.take(rate.length(), middle);
         if let Some((before, earlier)) = last_rate {
@@ -60,7 +60,6 @@ pub fn rates(track: &RotationTrack, clip: &Clip) -> RateMeasure {
             last_acceleration = Some((start, acceleration));
         }
         last_rate = Some((middle, rate));
-        last_rotor = rotor;
     }
     measure.rms_jerk = if jerks == 0 { 0.0 } else { (squares / jerks as f64).sqrt() };
     measure

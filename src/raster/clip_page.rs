@@ -2,7 +2,7 @@
 
 use glam::{DVec3, Vec2};
 
-use crate::clip::Clip;
+use crate::clip::{Clip, turns_between};
 use crate::raster::camera::Camera;
 use crate::raster::canvas::Canvas;
 use crate::raster::chart::{Area, SMALL, SnagMark, draw_letter};
@@ -12,7 +12,6 @@ use crate::raster::palette::Theme;
 use crate::raster::sheet::{Moment, StripStyle, contact_strip};
 use crate::raster::text::{TextStyle, draw_text, draw_text_centered, elide, text_width};
 use crate::raster::turn_map::{KEY_MIDDLE, MapRow, TurnMap, draw_turn_map, full_scale, turn_map_height};
-use crate::rotor::Rotor;
 use crate::snag::{Snag, SnagKind};
 
 /// The pose of a clip at a time.
@@ -38,18 +37,15 @@ pub fn turn_rate_rows(clip: &Clip, snags: &[Snag]) -> Vec<MapRow> {
 
 fn turn_rates(clip: &Clip, joint: usize) -> Vec<f32> {
     let count = clip.grid.count();
-    let Some(track) = clip.rotation(joint).filter(|track| !track.times.is_empty()) else {
+    if clip.rotation(joint).is_none_or(|track| track.times.is_empty()) {
         return vec![0.0; count];
-    };
+    }
+    let times: Vec<f64> = (0..count).map(|frame| clip.grid.time(frame)).collect();
+    let turns = turns_between(&clip.rotations_at(joint, &times));
     let mut rates = Vec::with_capacity(count);
-    let mut before: Option<(f64, Rotor)> = None;
-    for frame in 0..count {
-        let (secs, now) = (clip.grid.time(frame), track.at(clip.grid.time(frame)));
-        if let Some((secs_before, rotor_before)) = before {
-            let rate = (rotor_before.turn_to(now) / (secs - secs_before)).to_degrees();
-            rates.push(if rate.is_finite() { rate as f32 } else { f32::NAN });
-        }
-        before = Some((secs, now));
+    for (turn, secs) in turns.into_iter().zip(times.windows(2)) {
+        let rate = (turn / (secs[1] - secs[0])).to_degrees();
+        rates.push(if rate.is_finite() { rate as f32 } else { f32::NAN });
     }
     if count > 0 {
         rates.insert(0, rates.first().copied().unwrap_or(0.0));

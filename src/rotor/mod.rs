@@ -3,6 +3,7 @@
 //! Knows nothing of skeletons, files or screens. Angles are radians. The conventions and their map to quaternions
 //! are on [`Rotor`].
 
+pub mod batch;
 mod bivector;
 mod cumulative;
 mod euler;

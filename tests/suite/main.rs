@@ -2,6 +2,7 @@
 //!
 //! | module | what belongs there |
 //! |---|---|
+//! | `batch` | the bulk kernels: against 50-digit values, against the functions for one rotor, same bits at every level |
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
 //! | `commands` | the real program: what it prints, how it ends, what it writes |
@@ -29,6 +30,7 @@
 //! | `snags` | faults found and mended: built clips with one fault, and the real files with what is known of them |
 //! | `strategies` | the random values; no tests of its own |
 //! | `support` | where the outside files are, and comparing with a tolerance; tested by itself only |
+mod batch;
 mod bvh;
 mod commands;
 mod csv;

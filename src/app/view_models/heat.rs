@@ -2,11 +2,8 @@
 
 use std::ops::Range;
 
-use crate::clip::Clip;
-use crate::rotor::Rotor;
+use crate::clip::{Clip, turns_between};
 use crate::snag::{Cancelled, Progress};
-
-use super::sampled::rotation_at;
 
 /// What the colours of the turn map stand for.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
@@ -209,14 +206,10 @@ fn rates(clip: &Clip, joint: usize) -> Vec<f32> {
     if clip.rotation(joint).is_none_or(|track| track.times.len() < 2) {
         return values;
     }
-    let mut last: Option<(f64, Rotor)> = None;
-    for (frame, value) in values.iter_mut().enumerate() {
-        let time = clip.grid.time(frame);
-        let rotor = rotation_at(clip, joint, time);
-        if let Some((last_time, last_rotor)) = last {
-            *value = (last_rotor.turn_to(rotor) / (time - last_time)).to_degrees() as f32;
-        }
-        last = Some((time, rotor));
+    let times: Vec<f64> = (0..count).map(|frame| clip.grid.time(frame)).collect();
+    let turns = turns_between(&clip.rotations_at(joint, &times));
+    for (frame, turn) in turns.into_iter().enumerate() {
+        values[frame + 1] = (turn / (times[frame + 1] - times[frame])).to_degrees() as f32;
     }
     if count > 1 {
         values[0] = values[1];
@@ -229,12 +222,9 @@ fn differences(source: &Clip, result: &Clip, joint: usize) -> Vec<f32> {
     if source.same_joint(result, joint) {
         return vec![0.0; count];
     }
-    let times = (0..count).map(|frame| result.grid.time(frame));
-    times
-        .map(|time| {
-            rotation_at(source, joint, time).turn_to(rotation_at(result, joint, time)).to_degrees() as f32
-        })
-        .collect()
+    let times: Vec<f64> = (0..count).map(|frame| result.grid.time(frame)).collect();
+    let [before, after] = [source, result].map(|clip| clip.rotations_at(joint, &times));
+    before.iter().zip(&after).map(|(before, after)| before.turn_to(*after).to_degrees() as f32).collect()
 }
 
 /// The value below which `share` of all codes above 0 lie.

@@ -11,9 +11,13 @@ use crate::cli::input;
 use crate::cli::output::Output;
 use crate::clip::{Clip, RotationTrack};
 use crate::rotor::{EndRates, RotationSpline, Rotor, SplineError};
+use crate::skeleton::LocalPose;
 
 /// The most poses that are printed: joints times times.
 const MOST_POSES: usize = 50_000_000;
+
+/// Poses that are computed together.
+const TIMES_AT_ONCE: usize = 256;
 
 /// Plays the clip as its own format says, unless another path is named.
 pub(crate) fn run(args: &SampleArgs, output: &mut Output) -> Result<u8, CliError> {
@@ -30,8 +34,10 @@ pub(crate) fn run(args: &SampleArgs, output: &mut Output) -> Result<u8, CliError
         })?),
         _ => None,
     };
-    let poses: Vec<Vec<Place>> =
-        times.iter().map(|&secs| pose(clip, args, splines.as_deref(), &joints, secs)).collect();
+    let poses: Vec<Vec<Place>> = times
+        .chunks(TIMES_AT_ONCE)
+        .flat_map(|times| poses(clip, args, splines.as_deref(), &joints, times))
+        .collect();
     match args.format {
         SampleFormat::Json => print_json(clip, &joints, &times, &poses, output)?,
         SampleFormat::Csv => print_csv(clip, &joints, &times, &poses, output)?,
@@ -85,26 +91,32 @@ fn splines(clip: &Clip) -> Result<Vec<Option<RotationSpline>>, (usize, SplineErr
         .collect()
 }
 
-fn pose(
+fn poses(
     clip: &Clip,
     args: &SampleArgs,
     splines: Option<&[Option<RotationSpline>]>,
     joints: &[usize],
-    secs: f64,
-) -> Vec<Place> {
-    let mut local = clip.local_at_by(secs, args.path.and_then(PathName::kind));
-    for (own, spline) in local.iter_mut().zip(splines.unwrap_or_default()) {
-        if let Some(spline) = spline {
-            own.rotation = spline.at(secs);
+    times: &[f64],
+) -> Vec<Vec<Place>> {
+    let mut locals = clip.locals_at_by(times, args.path.and_then(PathName::kind));
+    for (local, &secs) in locals.iter_mut().zip(times) {
+        for (own, spline) in local.iter_mut().zip(splines.unwrap_or_default()) {
+            if let Some(spline) = spline {
+                own.rotation = spline.at(secs);
+            }
         }
     }
-    if args.world {
-        let world = clip.skeleton.world(&local);
-        let place = |&joint: &usize| (world[joint].rotation.to_xyzw(), world[joint].position().to_array());
-        return joints.iter().map(place).collect();
-    }
-    let place = |&joint: &usize| (local[joint].rotation.to_xyzw(), local[joint].translation.to_array());
-    joints.iter().map(place).collect()
+    let places = |local: &LocalPose| -> Vec<Place> {
+        if args.world {
+            let world = clip.skeleton.world(local);
+            let place =
+                |&joint: &usize| (world[joint].rotation.to_xyzw(), world[joint].position().to_array());
+            return joints.iter().map(place).collect();
+        }
+        let place = |&joint: &usize| (local[joint].rotation.to_xyzw(), local[joint].translation.to_array());
+        joints.iter().map(place).collect()
+    };
+    locals.iter().map(places).collect()
 }
 
 /// One object. Joint by joint, so that no second copy of all numbers is made.

@@ -1,0 +1,266 @@
+//! A track at many times at once.
+
+use crate::rotor::Rotor;
+use crate::rotor::batch::{self, Level, Parts, PartsMut, Streams};
+use crate::skeleton::LocalPose;
+
+use super::rotation_track::{PathKind, RotationTrack};
+use super::take::Clip;
+use super::times::Place;
+
+/// Orientations that are computed together; few enough to stay in the first cache.
+const TILE: usize = 256;
+
+impl RotationTrack {
+    /// [`RotationTrack::at`] for each of `times_secs`, several times as fast for many: within 1e-15 rad of it, and at keys the
+    /// same bits.
+    pub fn at_all(&self, times_secs: &[f64]) -> Vec<Rotor> {
+        self.at_all_by(times_secs, None)
+    }
+
+    /// As [`RotationTrack::at_all`], with `path` in place of the track's own path kinds where it is given.
+    pub fn at_all_by(&self, times_secs: &[f64], path: Option<PathKind>) -> Vec<Rotor> {
+        let keys = self.sound_keys();
+        let mut found = vec![Rotor::IDENTITY; times_secs.len()];
+        let (mut slerps, mut squads) = (Queue::<2>::new(), Queue::<4>::new());
+        // The inner points of a segment are computed once for all times in it.
+        let mut squad_points: Option<(usize, [Rotor; 4])> = None;
+        for (index, &secs) in times_secs.iter().enumerate() {
+            let (key, share) = match self.times.place(secs) {
+                None => continue,
+                Some(Place::At(key)) => {
+                    found[index] = keys[key];
+                    continue;
+                }
+                Some(Place::Between(key, share)) => (key, share),
+            };
+            match path.unwrap_or_else(|| self.paths.of(key)) {
+                PathKind::Hold => found[index] = keys[key],
+                PathKind::Cubic if self.tangents.is_some() => {
+                    found[index] = self.at_by(secs, Some(PathKind::Cubic));
+                }
+                PathKind::Slerp | PathKind::Cubic => {
+                    if slerps.push(index, [keys[key], keys[key + 1]], share) {
+                        slerps.flush(&mut found);
+                    }
+                }
+                PathKind::Squad => {
+                    let points = match squad_points {
+                        Some((segment, points)) if segment == key => points,
+                        _ => self.squad_points(key, |key| keys[key]),
+                    };
+                    squad_points = Some((key, points));
+                    if squads.push(index, points, share) {
+                        squads.flush(&mut found);
+                    }
+                }
+            }
+        }
+        slerps.flush(&mut found);
+        squads.flush(&mut found);
+        found
+    }
+
+    /// [`RotationTrack::sound_key`] of every key.
+    pub fn sound_keys(&self) -> Vec<Rotor> {
+        let mut last = None;
+        let mut keys: Vec<Option<Rotor>> = Vec::with_capacity(self.keys.len());
+        for key in self.keys.iter() {
+            last = key.try_normalize().or(last);
+            keys.push(last);
+        }
+        // Before the first sound key there is none to hold: that one serves.
+        let first = keys.iter().copied().flatten().next().unwrap_or(Rotor::IDENTITY);
+        keys.into_iter().map(|key| key.unwrap_or(first)).collect()
+    }
+}
+
+impl Clip {
+    /// A joint's turn relative to its parent at each of `times_secs`; its rest where nothing turns it.
+    pub fn rotations_at(&self, joint: usize, times_secs: &[f64]) -> Vec<Rotor> {
+        self.rotations_at_by(joint, times_secs, None)
+    }
+
+    /// As [`Clip::rotations_at`], with `path` in place of the track's own path kinds where it is given.
+    pub fn rotations_at_by(&self, joint: usize, times_secs: &[f64], path: Option<PathKind>) -> Vec<Rotor> {
+        match self.rotation(joint) {
+            Some(track) if !track.times.is_empty() => track.at_all_by(times_secs, path),
+            _ => vec![self.skeleton.joints()[joint].rest.rotation; times_secs.len()],
+        }
+    }
+
+    /// [`Clip::local_at_by`] for each of `times_secs`.
+    pub fn locals_at_by(&self, times_secs: &[f64], path: Option<PathKind>) -> Vec<LocalPose> {
+        let mut poses = vec![self.skeleton.rest_pose(); times_secs.len()];
+        for (joint, tracks) in self.joints.iter().enumerate().take(self.skeleton.len()) {
+            if tracks.rotation.as_ref().is_some_and(|track| !track.times.is_empty()) {
+                let turns = self.rotations_at_by(joint, times_secs, path);
+                for (pose, turn) in poses.iter_mut().zip(turns) {
+                    pose[joint].rotation = turn;
+                }
+            }
+            for (pose, &secs) in poses.iter_mut().zip(times_secs) {
+                if let Some(place) = tracks.translation.as_ref().and_then(|track| track.at(secs)) {
+                    pose[joint].translation = place;
+                }
+                if let Some(size) = tracks.scale.as_ref().and_then(|track| track.at(secs)) {
+                    pose[joint].scale = size;
+                }
+            }
+        }
+        poses
+    }
+}
+
+/// Turns from each of `rotors` to the next, in radians: one less than there are. All unit.
+pub fn turns_between(rotors: &[Rotor]) -> Vec<f64> {
+    let rows = |rotors: &[Rotor]| Streams::from_rows(rotors.iter().map(|rotor| parts(*rotor)));
+    let mut turns = vec![0.0; rotors.len().saturating_sub(1)];
+    // Overlapping by one.
+    for (start, turns) in turns.chunks_mut(TILE).enumerate().map(|(tile, turns)| (tile * TILE, turns)) {
+        let rows = rows(&rotors[start..=start + turns.len()]);
+        let all = rows.parts();
+        let (from, to) = (all.map(|stream| &stream[..turns.len()]), all.map(|stream| &stream[1..]));
+        batch::turns(Level::best(), from, to, turns);
+    }
+    turns
+}
+
+/// Interpolations of `N` rotors each that wait to be computed together.
+struct Queue<const N: usize> {
+    rotors: [Streams<f64, 4>; N],
+    shares: Vec<f64>,
+    results: Streams<f64, 4>,
+    /// Where each result goes.
+    indices: Vec<usize>,
+}
+
+impl<const N: usize> Queue<N> {
+    fn new() -> Self {
+        Self {
+            rotors: std::array::from_fn(|_| Streams::zeros(TILE)),
+            shares: Vec::with_capacity(TILE),
+            results: Streams::zeros(TILE),
+            indices: Vec::with_capacity(TILE),
+        }
+    }
+
+    /// Whether it is full now.
+    fn push(&mut self, index: usize, rotors: [Rotor; N], share: f64) -> bool {
+        let row = self.indices.len();
+        for (streams, rotor) in self.rotors.iter_mut().zip(rotors) {
+            streams.set(row, parts(rotor));
+        }
+        self.shares.push(share);
+        self.indices.push(index);
+        self.indices.len() == TILE
+    }
+
+    fn ready(&mut self) -> ([Parts<'_, f64, 4>; N], &[f64], PartsMut<'_, f64, 4>) {
+        let count = self.indices.len();
+        let rotors = self.rotors.each_ref().map(|streams| streams.parts().map(|stream| &stream[..count]));
+        let results = self.results.parts_mut().map(|stream| &mut stream[..count]);
+        (rotors, &self.shares, results)
+    }
+
+    fn deliver(&mut self, found: &mut [Rotor]) {
+        for (row, index) in self.indices.drain(..).enumerate() {
+            let [s, yz, zx, xy] = self.results.get(row);
+            found[index] = Rotor::new(s, yz, zx, xy);
+        }
+        self.shares.clear();
+    }
+}
+
+impl Queue<2> {
+    fn flush(&mut self, found: &mut [Rotor]) {
+        let ([from, to], shares, results) = self.ready();
+        batch::slerp(Level::best(), from, to, shares, results);
+        self.deliver(found);
+    }
+}
+
+impl Queue<4> {
+    fn flush(&mut self, found: &mut [Rotor]) {
+        let (points, shares, results) = self.ready();
+        batch::squad(Level::best(), points, shares, results);
+        self.deliver(found);
+    }
+}
+
+fn parts(rotor: Rotor) -> [f64; 4] {
+    [rotor.s, rotor.yz, rotor.zx, rotor.xy]
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::rotation_track::Paths;
+    use super::super::times::Times;
+    use super::*;
+    use crate::rotor::Bivector;
+
+    /// Turns about changing planes, of changing sign, one of them not finite and one far off unit length.
+    fn track(path: PathKind) -> RotationTrack {
+        let keys: Vec<Rotor> = (0..40)
+            .map(|i| {
+                let i = f64::from(i);
+                let turn = Bivector::new(i.sin(), 0.7 * (1.3 * i).cos(), 0.4 * i.cos());
+                Rotor::from_plane_angles(turn).scale(if i as usize % 3 == 1 { -1.0 } else { 1.0 })
+            })
+            .collect();
+        let mut keys = keys;
+        keys[0] = Rotor::new(f64::NAN, 0.0, 0.0, 0.0);
+        keys[7] = Rotor::new(0.0, f64::INFINITY, 0.0, 0.0);
+        keys[9] = keys[9].scale(3.0);
+        let times: Vec<f64> = (0..40).map(|i| 0.1 * f64::from(i) + 0.003 * f64::from(i % 5)).collect();
+        let mut track = RotationTrack::from_rotors(Times::Listed(times.into()), keys);
+        track.paths = Paths::Every(path);
+        track
+    }
+
+    #[test]
+    fn many_times_at_once_are_what_each_is_alone() {
+        let times: Vec<f64> = (0..3000).map(|i| f64::from(i) * 0.0015 - 0.1).collect();
+        for path in [PathKind::Hold, PathKind::Slerp, PathKind::Squad, PathKind::Cubic] {
+            let mut track = track(path);
+            if path == PathKind::Cubic {
+                track.tangents = Some(vec![[Rotor::new(0.1, 0.2, -0.3, 0.1); 2]; 40].into());
+            }
+            let found = track.at_all(&times);
+            assert_eq!(found.len(), times.len());
+            for (rotor, &secs) in found.iter().zip(&times) {
+                let alone = track.at(secs);
+                assert!(rotor.turn_to(alone) < 4e-15, "{path:?} at {secs}: {rotor:?} and {alone:?}");
+                assert!((rotor.norm() - 1.0).abs() < 2e-15, "{path:?} at {secs}: length {}", rotor.norm());
+            }
+        }
+    }
+
+    #[test]
+    fn keys_keep_their_bits() {
+        let track = track(PathKind::Slerp);
+        let times: Vec<f64> = track.times.iter().collect();
+        let alone: Vec<Rotor> = (0..40).map(|key| track.sound_key(key)).collect();
+        assert_eq!(track.at_all(&times), alone);
+        assert_eq!(track.sound_keys(), alone);
+    }
+
+    #[test]
+    fn without_keys_nothing_turns() {
+        let track = RotationTrack::from_rotors(Times::Listed([].into()), Vec::new());
+        assert_eq!(track.at_all(&[0.0, 1.0]), [Rotor::IDENTITY; 2]);
+        assert!(turns_between(&[]).is_empty());
+    }
+
+    #[test]
+    fn turns_between_neighbours_span_tiles() {
+        let rotors: Vec<Rotor> = (0..1000)
+            .map(|i| Rotor::from_plane_angles(Bivector::new(0.0, 0.001 * f64::from(i * i % 977), 0.0)))
+            .collect();
+        let turns = turns_between(&rotors);
+        assert_eq!(turns.len(), 999);
+        for (pair, turn) in rotors.windows(2).zip(turns) {
+            assert!((turn - pair[0].turn_to(pair[1])).abs() < 2e-15, "{turn}");
+        }
+    }
+}

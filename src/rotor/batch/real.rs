@@ -1,0 +1,127 @@
+//! The two kinds of numbers that the kernels work with.
+
+use std::fmt::Debug;
+use std::ops::{Add, Div, Mul, Neg, Sub};
+
+use super::coefficients as fitted;
+
+/// `f32` or `f64`. The trait belongs to the kernels and can't be implemented elsewhere.
+pub trait Real: Polynomials {}
+
+impl Real for f32 {}
+impl Real for f64 {}
+
+/// What the kernels need of a number. Not reachable from outside.
+pub trait Polynomials:
+    Copy
+    + Debug
+    + Default
+    + PartialOrd
+    + Add<Output = Self>
+    + Sub<Output = Self>
+    + Mul<Output = Self>
+    + Div<Output = Self>
+    + Neg<Output = Self>
+{
+    const ZERO: Self;
+    const ONE: Self;
+    const HALF: Self;
+    const TWO: Self;
+    fn size(self) -> Self;
+    fn root(self) -> Self;
+    fn widened(self) -> f64;
+    fn narrowed(value: f64) -> Self;
+    /// `θ²/u` of `u = 1 − cos θ`, 0 to 1.
+    fn square_over_rest(self) -> Self;
+    /// `θ/sin θ` of `u = 1 − cos θ`, 0 to 1.
+    fn angle_over_sine(self) -> Self;
+    /// `sin √y/√y`, 0 to (π/2)².
+    fn sine_over_angle(self) -> Self;
+    /// `cos √y`, 0 to (π/2)².
+    fn cosine(self) -> Self;
+}
+
+macro_rules! polynomials {
+    ($kind:ty, $narrow:expr, $square:ident, $angle:ident, $sine:ident, $cosine:ident) => {
+        impl Polynomials for $kind {
+            const ZERO: Self = 0.0;
+            const ONE: Self = 1.0;
+            const HALF: Self = 0.5;
+            const TWO: Self = 2.0;
+            #[inline(always)]
+            fn size(self) -> Self {
+                self.abs()
+            }
+            #[inline(always)]
+            fn root(self) -> Self {
+                self.sqrt()
+            }
+            #[inline(always)]
+            fn widened(self) -> f64 {
+                self.into()
+            }
+            #[inline(always)]
+            fn narrowed(value: f64) -> Self {
+                ($narrow)(value)
+            }
+            #[inline(always)]
+            fn square_over_rest(self) -> Self {
+                polynomial(&fitted::$square, self)
+            }
+            #[inline(always)]
+            fn angle_over_sine(self) -> Self {
+                polynomial(&fitted::$angle, self)
+            }
+            #[inline(always)]
+            fn sine_over_angle(self) -> Self {
+                polynomial(&fitted::$sine, self)
+            }
+            #[inline(always)]
+            fn cosine(self) -> Self {
+                polynomial(&fitted::$cosine, self)
+            }
+        }
+    };
+}
+
+polynomials!(
+    f32,
+    |value: f64| value as f32,
+    SQUARE_OVER_REST_F32,
+    ANGLE_OVER_SINE_F32,
+    SINE_OVER_ANGLE_F32,
+    COSINE_F32
+);
+polynomials!(
+    f64,
+    std::convert::identity,
+    SQUARE_OVER_REST_F64,
+    ANGLE_OVER_SINE_F64,
+    SINE_OVER_ANGLE_F64,
+    COSINE_F64
+);
+
+/// The polynomial with these factors of rising powers.
+///
+/// A short one is summed by Horner's rule, which rounds least. In a long one even and odd powers are summed apart: each sum
+/// has to wait for the one before, and so there are two that do not wait for each other.
+#[inline(always)]
+pub(super) fn polynomial<F: Mul<Output = F> + Add<Output = F> + Copy, const N: usize>(
+    factors: &[F; N],
+    y: F,
+) -> F {
+    if N < 10 {
+        let mut sum = factors[N - 1];
+        for power in (0..N - 1).rev() {
+            sum = sum * y + factors[power];
+        }
+        return sum;
+    }
+    let square = y * y;
+    let (mut last, mut other) = (factors[N - 1], factors[N - 2]);
+    for power in (0..N - 2).rev() {
+        (last, other) = (other, last * square + factors[power]);
+    }
+    // Two sums are left, of which the later one holds the even powers.
+    other + y * last
+}

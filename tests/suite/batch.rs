@@ -1,0 +1,352 @@
+use serde_json::Value;
+use turnwright::rotor::batch::{self, Level, Real, Streams};
+use turnwright::rotor::{Axis, Bivector, EulerOrder, Rotor, slerp, squad};
+
+use crate::support::{Distance, Tally, list, number, numbers};
+
+const LEVELS: [(&str, fn() -> Level); 2] = [("baseline", Level::baseline), ("best", Level::best)];
+
+/// Lengths around the blocks that the kernels work in.
+const COUNTS: [usize; 7] = [0, 1, 63, 64, 65, 128, 1000];
+
+fn reference() -> Value {
+    serde_json::from_str(include_str!("../data/batch_reference.json")).unwrap()
+}
+
+/// One case of the reference: its kind, the arguments, and the value as the sum of two numbers.
+fn case<const I: usize, const O: usize>(value: &Value) -> (String, [f64; I], [[f64; 2]; O]) {
+    let parts = list(value);
+    let value: Vec<[f64; 2]> = list(&parts[2]).iter().map(numbers).collect();
+    (parts[0].as_str().unwrap().to_owned(), numbers(&parts[1]), value.try_into().unwrap())
+}
+
+fn cases<const I: usize, const O: usize>(
+    width: &str,
+    function: &str,
+) -> Vec<(String, [f64; I], [[f64; 2]; O])> {
+    list(&reference()[width][function]).iter().map(case).collect()
+}
+
+/// The turn in radians between a rotor found and the exact unit one, and how far the length is from 1.
+fn rotor_error(found: [f64; 4], exact: [[f64; 2]; 4]) -> [f64; 2] {
+    let off: [f64; 4] = std::array::from_fn(|i| (found[i] - exact[i][0]) - exact[i][1]);
+    let along: f64 = (0..4).map(|i| off[i] * exact[i][0]).sum();
+    let across = (0..4).fold(0.0, |sum: f64, i| sum.hypot(off[i] - along * exact[i][0]));
+    // A rotor and its opposite are the same; the reference takes the short way as the kernels do, so signs agree.
+    [2.0 * across, along.abs()]
+}
+
+fn angles_error(found: [f64; 3], exact: [[f64; 2]; 3]) -> f64 {
+    (0..3).fold(0.0, |sum: f64, i| sum.hypot((found[i] - exact[i][0]) - exact[i][1]))
+}
+
+fn column<F: Real, const I: usize>(rows: &[[f64; I]], narrowed: impl Fn(f64) -> F + Copy) -> Vec<Vec<F>> {
+    (0..I).map(|part| rows.iter().map(|row| narrowed(row[part])).collect()).collect()
+}
+
+fn views<const N: usize, F>(columns: &[Vec<F>]) -> [&[F]; N] {
+    std::array::from_fn(|part| columns[part].as_slice())
+}
+
+fn accuracy<F: Real + Into<f64>>(
+    width: &str,
+    narrowed: impl Fn(f64) -> F + Copy,
+    allowed: f64,
+    log_allowed: f64,
+) {
+    for (name, level) in LEVELS {
+        let known = cases::<9, 4>(width, "slerp");
+        let columns = column(&known.iter().map(|case| case.1).collect::<Vec<_>>(), narrowed);
+        let mut out = Streams::zeros(known.len());
+        let (a, b) = (views(&columns[..4]), views(&columns[4..8]));
+        batch::slerp(level(), a, b, &columns[8], out.parts_mut());
+        let mut tally = Tally::new("bulk slerp");
+        for (row, (kind, arguments, exact)) in known.iter().enumerate() {
+            let [turn, length] = rotor_error(out.get(row).map(Into::into), *exact);
+            tally.check(&format!("{width} {name} {kind} {arguments:?}"), turn.max(length), allowed);
+        }
+        tally.finish(96);
+
+        let known = cases::<3, 4>(width, "exp");
+        let columns = column(&known.iter().map(|case| case.1).collect::<Vec<_>>(), narrowed);
+        batch::exp(level(), views(&columns), out.parts_mut());
+        let mut tally = Tally::new("bulk exp");
+        for (row, (kind, arguments, exact)) in known.iter().enumerate() {
+            let [turn, length] = rotor_error(out.get(row).map(Into::into), *exact);
+            let [yz, zx, xy] = *arguments;
+            let allowed = allowed * half_turns(yz.hypot(zx).hypot(xy));
+            tally.check(&format!("{width} {name} {kind} {arguments:?}"), turn.max(length), allowed);
+        }
+        tally.finish(96);
+
+        let known = cases::<4, 3>(width, "log");
+        let columns = column(&known.iter().map(|case| case.1).collect::<Vec<_>>(), narrowed);
+        let mut out = Streams::zeros(known.len());
+        batch::log(level(), views(&columns), out.parts_mut());
+        let mut tally = Tally::new("bulk log");
+        for (row, (kind, arguments, exact)) in known.iter().enumerate() {
+            let error = angles_error(out.get(row).map(Into::into), *exact);
+            tally.check(&format!("{width} {name} {kind} {arguments:?}"), error, log_allowed);
+        }
+        tally.finish(96);
+    }
+}
+
+/// The length of a long turn has to be rounded before its sine is taken; so the error grows with it. At least 1.
+fn half_turns(angle: f64) -> f64 {
+    1.0_f64.max(angle / std::f64::consts::PI)
+}
+
+#[test]
+fn kernels_in_double_precision_are_right_to_1e15() {
+    accuracy::<f64>("f64", |part| part, 1e-15, 1e-15);
+}
+
+#[test]
+fn kernels_in_single_precision_are_right_to_3e7() {
+    // A rotor of such parts is unit to 6e-8 at best, and near a half turn log multiplies that by 2π.
+    accuracy::<f32>("f32", |part| part as f32, 3e-7, 5e-7);
+}
+
+#[test]
+fn the_functions_for_one_rotor_are_right_to_a_few_roundings() {
+    // The unit of the table in DEVELOPERS.md; the factors are the k there.
+    const UNIT: f64 = 4e-16;
+    let mut tally = Tally::new("slerp of one");
+    for (kind, [s, yz, zx, xy, os, oyz, ozx, oxy, t], exact) in cases::<9, 4>("f64", "slerp") {
+        let found = slerp(Rotor::new(s, yz, zx, xy), Rotor::new(os, oyz, ozx, oxy), t);
+        let turn = rotor_error([found.s, found.yz, found.zx, found.xy], exact)[0];
+        tally.check(&kind, turn, 2.0 * UNIT);
+    }
+    tally.finish(96);
+    let mut tally = Tally::new("exp of one");
+    for (kind, [yz, zx, xy], exact) in cases::<3, 4>("f64", "exp") {
+        let found = Rotor::from_plane_angles(Bivector::new(yz, zx, xy));
+        let turn = rotor_error([found.s, found.yz, found.zx, found.xy], exact)[0];
+        tally.check(&kind, turn, 2.0 * UNIT * half_turns(yz.hypot(zx).hypot(xy)));
+    }
+    tally.finish(96);
+    let mut tally = Tally::new("log of one");
+    for (kind, [s, yz, zx, xy], exact) in cases::<4, 3>("f64", "log") {
+        let found = Rotor::new(s, yz, zx, xy).plane_angles();
+        tally.check(&kind, angles_error([found.yz, found.zx, found.xy], exact), 3.0 * UNIT);
+    }
+    tally.finish(96);
+}
+
+/// Numbers from −1 to 1 in a fixed order without a pattern.
+struct Numbers(u64);
+
+impl Numbers {
+    fn next(&mut self) -> f64 {
+        self.0 = self.0.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
+        (self.0 >> 11) as f64 / (1_u64 << 52) as f64 - 1.0
+    }
+
+    fn rotor(&mut self) -> Rotor {
+        Rotor::new(self.next(), self.next(), self.next(), self.next()).normalize()
+    }
+
+    fn rotors(&mut self, count: usize) -> Vec<Rotor> {
+        (0..count).map(|_| self.rotor()).collect()
+    }
+}
+
+fn rows(rotors: &[Rotor]) -> Streams<f64, 4> {
+    Streams::from_rows(rotors.iter().map(|r| [r.s, r.yz, r.zx, r.xy]))
+}
+
+fn rotor([s, yz, zx, xy]: [f64; 4]) -> Rotor {
+    Rotor::new(s, yz, zx, xy)
+}
+
+#[test]
+fn kernels_agree_with_the_functions_for_one_rotor() {
+    let mut numbers = Numbers(1);
+    for count in COUNTS {
+        let (a, b) = (numbers.rotors(count), numbers.rotors(count));
+        let points: Vec<[f64; 3]> =
+            (0..count).map(|_| [numbers.next(), numbers.next(), numbers.next()]).collect();
+        let (left, right) = (rows(&a), rows(&b));
+        let places = Streams::from_rows(points.iter().copied());
+        for (name, level) in LEVELS {
+            let mut out = Streams::zeros(count);
+            batch::compose(level(), left.parts(), right.parts(), out.parts_mut());
+            for row in 0..count {
+                assert_eq!(rotor(out.get(row)), a[row] * b[row], "{name} row {row}");
+            }
+            let mut turned = Streams::zeros(count);
+            batch::apply(level(), left.parts(), places.parts(), turned.parts_mut());
+            let mut turns = vec![0.0; count];
+            batch::turns(level(), left.parts(), right.parts(), &mut turns);
+            for row in 0..count {
+                let exact = a[row].apply(points[row].into()).to_array();
+                assert!(turned.get(row).distance_to(&exact) < 1e-15, "{name} row {row}");
+                let error = (turns[row] - a[row].turn_to(b[row])).abs();
+                assert!(error < 2e-15, "{name} row {row}: {error:e}");
+            }
+        }
+    }
+}
+
+#[test]
+fn the_smallest_turns_keep_their_digits() {
+    for size in [1e-3, 1e-9, 1e-15, 0.0] {
+        let small = rows(&[Rotor::from_plane_angles(Bivector::new(size, 0.0, 0.0))]);
+        let none = rows(&[-Rotor::IDENTITY]);
+        let mut found = [1.0];
+        batch::turns(Level::best(), small.parts(), none.parts(), &mut found);
+        assert!((found[0] - size).abs() <= 1e-12 * size, "{} for {size}", found[0]);
+    }
+}
+
+#[test]
+fn bulk_squad_goes_wherever_squad_goes() {
+    let mut numbers = Numbers(2);
+    let four: [Vec<Rotor>; 4] = std::array::from_fn(|_| numbers.rotors(1000));
+    let t: Vec<f64> = (0..1000).map(|_| 0.5 + 0.5 * numbers.next()).collect();
+    let streams = four.each_ref().map(|rotors| rows(rotors));
+    let mut long_ways = 0;
+    for (name, level) in LEVELS {
+        let mut out = Streams::zeros(1000);
+        batch::squad(level(), streams.each_ref().map(Streams::parts), &t, out.parts_mut());
+        for row in 0..1000 {
+            let [a, inner_a, inner_b, b] = four.each_ref().map(|rotors| rotors[row]);
+            long_ways += usize::from(a.dot(b) < 0.0);
+            let exact = squad(a, inner_a, inner_b, b, t[row]);
+            let error = rotor(out.get(row)).distance_to(&exact);
+            // Near a full turn between two points the plane between them is their rounding: random ones come that near.
+            let nearest_to_opposite = [a.dot(b), inner_a.dot(inner_b)].into_iter().fold(1.0, f64::min);
+            assert!(error < 1e-14 / (1.0 + nearest_to_opposite).sqrt(), "{name} row {row}: {error:e}");
+        }
+    }
+    assert!(long_ways > 500, "the rare case was tried: {long_ways}");
+}
+
+#[test]
+fn euler_kernels_agree_in_all_orders() {
+    let mut numbers = Numbers(3);
+    for order in EulerOrder::ALL {
+        let mut angles: Vec<[f64; 3]> =
+            (0..500).map(|_| std::array::from_fn(|_| 9.0 * numbers.next())).collect();
+        // Poles and their neighbours, and what goes round so often that only the exact function will do.
+        let middle = if order.is_proper() { 0.0 } else { std::f64::consts::FRAC_PI_2 };
+        for off in [0.0, 1e-16, 1e-12, 1e-9, 1e-6] {
+            angles.extend([[0.3, middle - off, -1.2], [2.5, middle + off, 0.9], [-0.4, -middle + off, 3.0]]);
+        }
+        angles.push([1e9, 0.2, 0.3]);
+        let given = Streams::from_rows(angles.iter().copied());
+        for (name, level) in LEVELS {
+            let mut turned = Streams::zeros(angles.len());
+            batch::euler_rotors(level(), order, given.parts(), turned.parts_mut());
+            let mut back = Streams::zeros(angles.len());
+            batch::euler_angles(level(), order, turned.parts(), 0.25, back.parts_mut());
+            for (row, angles) in angles.iter().enumerate() {
+                let exact = order.to_rotor(*angles);
+                let found = rotor(turned.get(row));
+                let error = found.distance_to(&exact);
+                assert!(error < 2e-15, "{name} {order} {angles:?}: {error:e} rad to the rotor");
+                let triple = back.get(row);
+                let lost = order.to_rotor(triple).distance_to(&found);
+                assert!(lost < 2e-15, "{name} {order} {angles:?} as {triple:?}: {lost:e} rad lost");
+                let alone = order.from_rotor(found, 0.25);
+                let same = order.nearest_equal(triple, alone).distance_to(&alone);
+                let is_near_pole = row >= 500 && row + 1 < angles.len();
+                assert!(is_near_pole || same < 1e-12, "{name} {order}: {triple:?}, for one {alone:?}");
+                assert!((triple[0].abs() <= 3.1416) & (triple[2].abs() <= 3.1416), "{triple:?}");
+            }
+        }
+    }
+}
+
+#[test]
+fn at_a_pole_the_last_angle_is_the_one_asked_for() {
+    let order = EulerOrder::ZXY;
+    let at_pole = Axis::Z.rotor(0.7) * Axis::X.rotor(std::f64::consts::FRAC_PI_2);
+    let mut out = Streams::zeros(1);
+    batch::euler_angles(Level::best(), order, rows(&[at_pole]).parts(), 0.4, out.parts_mut());
+    let [first, middle, last] = out.get(0);
+    assert!((last - 0.4).abs() < 1e-15 && (middle - std::f64::consts::FRAC_PI_2).abs() < 1e-15, "{last}");
+    assert!(order.to_rotor([first, middle, last]).distance_to(&at_pole) < 1e-15);
+}
+
+#[test]
+fn both_levels_give_the_same_bits() {
+    fn bits<const N: usize>(run: impl Fn(Level, &mut Streams<f64, N>)) {
+        let [plain, wide] = LEVELS.map(|(_, level)| {
+            let mut out = Streams::zeros(1000);
+            run(level(), &mut out);
+            out
+        });
+        for row in 0..1000 {
+            assert_eq!(plain.get(row).map(f64::to_bits), wide.get(row).map(f64::to_bits), "row {row}");
+        }
+    }
+    let mut numbers = Numbers(4);
+    let (a, b) = (rows(&numbers.rotors(1000)), rows(&numbers.rotors(1000)));
+    let (inner_a, inner_b) = (rows(&numbers.rotors(1000)), rows(&numbers.rotors(1000)));
+    let t: Vec<f64> = (0..1000).map(|_| 0.5 + 0.5 * numbers.next()).collect();
+    let angles: Streams<f64, 3> =
+        Streams::from_rows((0..1000).map(|_| std::array::from_fn(|_| numbers.next())));
+    bits(|level, out: &mut Streams<f64, 4>| batch::slerp(level, a.parts(), b.parts(), &t, out.parts_mut()));
+    bits(|level, out: &mut Streams<f64, 4>| {
+        batch::squad(level, [a.parts(), inner_a.parts(), inner_b.parts(), b.parts()], &t, out.parts_mut());
+    });
+    bits(|level, out: &mut Streams<f64, 4>| batch::exp(level, angles.parts(), out.parts_mut()));
+    bits(|level, out: &mut Streams<f64, 3>| batch::log(level, a.parts(), out.parts_mut()));
+    bits(|level, out: &mut Streams<f64, 4>| batch::compose(level, a.parts(), b.parts(), out.parts_mut()));
+    bits(|level, out: &mut Streams<f64, 3>| batch::apply(level, a.parts(), angles.parts(), out.parts_mut()));
+    for order in EulerOrder::ALL {
+        bits(|level, out: &mut Streams<f64, 4>| {
+            batch::euler_rotors(level, order, angles.parts(), out.parts_mut());
+        });
+        bits(|level, out: &mut Streams<f64, 3>| {
+            batch::euler_angles(level, order, a.parts(), 0.0, out.parts_mut());
+        });
+    }
+    let narrow = |streams: &Streams<f64, 4>| {
+        Streams::<f32, 4>::from_rows((0..1000).map(|row| streams.get(row).map(|part| part as f32)))
+    };
+    let (a, b) = (narrow(&a), narrow(&b));
+    let t: Vec<f32> = t.iter().map(|t| *t as f32).collect();
+    let [plain, wide] = LEVELS.map(|(_, level)| {
+        let mut out = Streams::zeros(1000);
+        batch::slerp(level(), a.parts(), b.parts(), &t, out.parts_mut());
+        out
+    });
+    assert!((0..1000).all(|row| plain.get(row).map(f32::to_bits) == wide.get(row).map(f32::to_bits)));
+}
+
+#[test]
+fn what_is_no_number_stays_in_its_row() {
+    let mut rotors = Numbers(5).rotors(100);
+    rotors[70] = Rotor::new(f64::NAN, 0.0, 0.0, 0.0);
+    let broken = rows(&rotors);
+    let mut out = Streams::zeros(100);
+    batch::log(Level::best(), broken.parts(), out.parts_mut());
+    for row in 0..100 {
+        assert_eq!(out.get(row).iter().all(|part| part.is_finite()), row != 70, "row {row}");
+    }
+}
+
+#[test]
+#[should_panic(expected = "expected streams of one length, found 3 and 2")]
+fn streams_of_two_lengths_are_told() {
+    let (three, two) = (Streams::<f64, 4>::zeros(3), Streams::<f64, 4>::zeros(2));
+    let mut out = Streams::zeros(3);
+    batch::compose(Level::best(), three.parts(), two.parts(), out.parts_mut());
+}
+
+#[test]
+fn the_reference_is_what_its_script_says() {
+    // A quarter turn halfway, by hand: so that the file itself is tied to something.
+    let half = std::f64::consts::FRAC_1_SQRT_2;
+    let quarter = Rotor::new(half, -half, 0.0, 0.0);
+    let known = slerp(Rotor::IDENTITY, quarter, 0.5);
+    let exact = [(22.5_f64).to_radians().cos(), -(22.5_f64).to_radians().sin()];
+    assert!((known.s - exact[0]).abs() + (known.yz - exact[1]).abs() < 1e-15);
+    let first = list(&reference()["f64"]["slerp"])[0].clone();
+    let (_, arguments, exact) = case::<9, 4>(&first);
+    let norm: f64 = exact.iter().map(|part| number(&Value::from(part[0])).powi(2)).sum();
+    assert!((norm - 1.0).abs() < 1e-15 && (0.0..=1.0).contains(&arguments[8]));
+}
