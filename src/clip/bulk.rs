@@ -20,7 +20,9 @@ impl RotationTrack {
 
     /// As [`RotationTrack::at_all`], with `path` in place of the track's own path kinds where it is given.
     pub fn at_all_by(&self, times_secs: &[f64], path: Option<PathKind>) -> Vec<Rotor> {
-        let keys = self.sound_keys();
+        // A few times don't pay for looking at all keys.
+        let keys = (4 * times_secs.len() > self.keys.len()).then(|| self.sound_keys());
+        let sound = |key: usize| keys.as_ref().map_or_else(|| self.sound_key(key), |keys| keys[key]);
         let mut found = vec![Rotor::IDENTITY; times_secs.len()];
         let (mut slerps, mut squads) = (Queue::<2>::new(), Queue::<4>::new());
         // The inner points of a segment are computed once for all times in it.
@@ -29,25 +31,25 @@ impl RotationTrack {
             let (key, share) = match self.times.place(secs) {
                 None => continue,
                 Some(Place::At(key)) => {
-                    found[index] = keys[key];
+                    found[index] = sound(key);
                     continue;
                 }
                 Some(Place::Between(key, share)) => (key, share),
             };
             match path.unwrap_or_else(|| self.paths.of(key)) {
-                PathKind::Hold => found[index] = keys[key],
+                PathKind::Hold => found[index] = sound(key),
                 PathKind::Cubic if self.tangents.is_some() => {
                     found[index] = self.at_by(secs, Some(PathKind::Cubic));
                 }
                 PathKind::Slerp | PathKind::Cubic => {
-                    if slerps.push(index, [keys[key], keys[key + 1]], share) {
+                    if slerps.push(index, [sound(key), sound(key + 1)], share) {
                         slerps.flush(&mut found);
                     }
                 }
                 PathKind::Squad => {
                     let points = match squad_points {
                         Some((segment, points)) if segment == key => points,
-                        _ => self.squad_points(key, |key| keys[key]),
+                        _ => self.squad_points(key, sound),
                     };
                     squad_points = Some((key, points));
                     if squads.push(index, points, share) {

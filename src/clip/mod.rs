@@ -10,6 +10,7 @@ mod rotation_track;
 mod take;
 mod times;
 mod vector_track;
+mod worlds;
 
 pub use bulk::turns_between;
 pub use continuity::continuous_angles;
@@ -18,3 +19,4 @@ pub use rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};
 pub use take::{Clip, FrameGrid, JointTracks};
 pub use times::{Place, Times};
 pub use vector_track::{VectorPath, VectorTrack};
+pub use worlds::Worlds;

@@ -5,9 +5,9 @@ use std::collections::BTreeSet;
 use glam::DVec3;
 use rayon::prelude::*;
 
-use crate::clip::{Clip, Times};
+use crate::clip::{Clip, Times, Worlds};
 use crate::rotor::Rotor;
-use crate::skeleton::{Skeleton, WorldJoint};
+use crate::skeleton::Skeleton;
 use crate::snag::Cancelled;
 use crate::snag::Progress;
 
@@ -293,19 +293,21 @@ fn measure_tips(clips: [&Clip; 2], pairs: &[[usize; 2]], times: &[f64]) -> Vec<T
             points.into_iter().map(move |point| Tip { pair, point })
         })
         .collect();
-    let place = |world: &[WorldJoint], tip: &Tip, side: usize| {
-        let joint = world[tip.pair[side]].scene_from_joint;
-        tip.point.map_or(joint.translation, |points| joint.transform_point3(points[side]))
+    let place = |worlds: &Worlds, time: usize, tip: &Tip, side: usize| {
+        let joint = tip.pair[side];
+        tip.point
+            .map_or_else(|| worlds.position(joint, time), |points| worlds.point(joint, time, points[side]))
     };
     // Chunks of a fixed length, added up in order: the split of the work among cores does not show in the numbers.
     let chunks: Vec<Vec<(Peak, f64)>> = times
         .par_chunks(256)
         .map(|chunk| {
             let mut sums = vec![(Peak::default(), 0.0); tips.len()];
-            for &time in chunk {
-                let worlds = clips.map(|clip| clip.world_at(time));
+            let worlds = clips.map(|clip| clip.worlds_at(chunk));
+            for (index, &time) in chunk.iter().enumerate() {
                 for (tip, (moved, sum)) in tips.iter().zip(&mut sums) {
-                    let distance = place(&worlds[0], tip, 0).distance(place(&worlds[1], tip, 1));
+                    let distance =
+                        place(&worlds[0], index, tip, 0).distance(place(&worlds[1], index, tip, 1));
                     *sum += distance;
                     if distance > moved.value {
                         *moved = Peak { value: distance, at_secs: time };

@@ -243,7 +243,7 @@ mod tests {
 
     use super::*;
     use crate::clip::{FrameGrid, JointTracks, RotationTrack, Times};
-    use crate::rotor::Bivector;
+    use crate::rotor::{Bivector, Rotor};
     use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
 
     /// One joint that turns by 3° a frame in plane xy, 30 frames a second.

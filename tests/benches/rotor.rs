@@ -1,13 +1,14 @@
 //! How many times as fast as the general libraries are the bulk kernels, for the same work in the same run?
 //!
-//! `cargo bench --no-default-features --bench rotor`; a name behind it, as in `-- slerp`, runs a part. One thread. Each
+//! `cargo bench --no-default-features --bench rotor`; a name behind it, as in `-- slerp`, runs a part. One thread, time of the processor. Each
 //! library keeps its rotations as it likes them best: ours in streams, theirs one after the other.
+
+mod cpu_time;
 
 use std::hint::black_box;
 
-use criterion::{
-    BenchmarkGroup, Criterion, Throughput, criterion_group, criterion_main, measurement::WallTime,
-};
+use cpu_time::CpuTime;
+use criterion::{BenchmarkGroup, Throughput, criterion_group, criterion_main};
 use glam::{DQuat, DVec3, EulerRot, Quat, Vec3};
 use nalgebra::{UnitQuaternion, Vector3};
 use turnwright::rotor::batch::{self, Level, Real, Streams};
@@ -75,7 +76,8 @@ fn ultraviolet_f64(rotors: &[Rotor]) -> Vec<DRotor3> {
     rotors.iter().map(|r| DRotor3::new(r.s, ultraviolet::DBivec3::new(r.xy, -r.zx, r.yz))).collect()
 }
 
-type Group<'a> = BenchmarkGroup<'a, WallTime>;
+type Criterion = criterion::Criterion<CpuTime>;
+type Group<'a> = BenchmarkGroup<'a, CpuTime>;
 
 fn group<'a>(criterion: &'a mut Criterion, name: &str) -> Group<'a> {
     let mut group = criterion.benchmark_group(name);
@@ -337,5 +339,9 @@ fn products(criterion: &mut Criterion) {
     group.finish();
 }
 
-criterion_group!(benches, slerp, squad, exp_and_log, euler, products);
+criterion_group! {
+    name = benches;
+    config = criterion::Criterion::default().with_measurement(CpuTime);
+    targets = slerp, squad, exp_and_log, euler, products
+}
 criterion_main!(benches);

@@ -98,6 +98,15 @@ fn poses(
     joints: &[usize],
     times: &[f64],
 ) -> Vec<Vec<Place>> {
+    if args.world && splines.is_none() {
+        let worlds = clip.worlds_at_by(times, args.path.and_then(PathName::kind));
+        let place = |joint: usize, time: usize| {
+            (worlds.rotation(joint, time).to_xyzw(), worlds.position(joint, time).to_array())
+        };
+        return (0..times.len())
+            .map(|time| joints.iter().map(|&joint| place(joint, time)).collect())
+            .collect();
+    }
     let mut locals = clip.locals_at_by(times, args.path.and_then(PathName::kind));
     for (local, &secs) in locals.iter_mut().zip(times) {
         for (own, spline) in local.iter_mut().zip(splines.unwrap_or_default()) {

@@ -40,7 +40,7 @@ mod turn;
 pub use euler::{euler_angles, euler_rotors};
 pub use exp_log::{exp, log};
 pub use level::Level;
-pub use product::{apply, compose};
+pub use product::{apply, carry, compose};
 pub use real::Real;
 pub use slerp::{slerp, squad};
 pub use streams::{Parts, PartsMut, Streams};

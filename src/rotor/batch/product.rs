@@ -19,14 +19,7 @@ pub fn compose<F: Real>(level: Level, a: Parts<'_, F, 4>, b: Parts<'_, F, 4>, ou
                 [a0, a1, a2, a3, b0, b1, b2, b3],
                 out,
                 #[inline(always)]
-                |[s, yz, zx, xy, os, oyz, ozx, oxy]: [F; 8]| {
-                    [
-                        s * os - yz * oyz - zx * ozx - xy * oxy,
-                        s * oyz + yz * os - (zx * oxy - xy * ozx),
-                        s * ozx + zx * os - (xy * oyz - yz * oxy),
-                        s * oxy + xy * os - (yz * ozx - zx * oyz),
-                    ]
-                },
+                |[s, yz, zx, xy, os, oyz, ozx, oxy]: [F; 8]| product([s, yz, zx, xy], [os, oyz, ozx, oxy]),
             );
         },
     );
@@ -57,9 +50,54 @@ pub fn apply<F: Real>(
     );
 }
 
+/// Forward kinematics from a parent to its child, row by row: given the turn and the place of the parent in the scene and those
+/// of the child relative to it, those of the child in the scene.
+///
+/// # Panics
+/// When the streams differ in length.
+pub fn carry<F: Real>(
+    level: Level,
+    (parent_turn, parent_place): (Parts<'_, F, 4>, Parts<'_, F, 3>),
+    (turn, place): (Parts<'_, F, 4>, Parts<'_, F, 3>),
+    (world_turn, world_place): (PartsMut<'_, F, 4>, PartsMut<'_, F, 3>),
+) {
+    let [p0, p1, p2, p3] = parent_turn;
+    let [px, py, pz] = parent_place;
+    let [t0, t1, t2, t3] = turn;
+    let [x, y, z] = place;
+    let [w0, w1, w2, w3] = world_turn;
+    let [wx, wy, wz] = world_place;
+    level.run(
+        #[inline(always)]
+        || {
+            each_row(
+                [p0, p1, p2, p3, px, py, pz, t0, t1, t2, t3, x, y, z],
+                [w0, w1, w2, w3, wx, wy, wz],
+                #[inline(always)]
+                |[p0, p1, p2, p3, px, py, pz, t0, t1, t2, t3, x, y, z]: [F; 14]| {
+                    let [s, yz, zx, xy] = product([p0, p1, p2, p3], [t0, t1, t2, t3]);
+                    let [vx, vy, vz] = turned([p0, p1, p2, p3], [x, y, z]);
+                    [s, yz, zx, xy, px + vx, py + vy, pz + vz]
+                },
+            );
+        },
+    );
+}
+
+/// The geometric product.
+#[inline(always)]
+fn product<F: Real>([s, yz, zx, xy]: [F; 4], [os, oyz, ozx, oxy]: [F; 4]) -> [F; 4] {
+    [
+        s * os - yz * oyz - zx * ozx - xy * oxy,
+        s * oyz + yz * os - (zx * oxy - xy * ozx),
+        s * ozx + zx * os - (xy * oyz - yz * oxy),
+        s * oxy + xy * os - (yz * ozx - zx * oyz),
+    ]
+}
+
 /// `R v ~R`.
 #[inline(always)]
-pub(super) fn turned<F: Real>([s, b0, b1, b2]: [F; 4], [x, y, z]: [F; 3]) -> [F; 3] {
+fn turned<F: Real>([s, b0, b1, b2]: [F; 4], [x, y, z]: [F; 3]) -> [F; 3] {
     let cross = [b1 * z - b2 * y, b2 * x - b0 * z, b0 * y - b1 * x];
     let again = [b1 * cross[2] - b2 * cross[1], b2 * cross[0] - b0 * cross[2], b0 * cross[1] - b1 * cross[0]];
     let v = [x, y, z];
