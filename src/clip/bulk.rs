@@ -27,15 +27,19 @@ impl RotationTrack {
         let (mut slerps, mut squads) = (Queue::<2>::new(), Queue::<4>::new());
         // The inner points of a segment are computed once for all times in it.
         let mut squad_points: Option<(usize, [Rotor; 4])> = None;
+        // The key before the last time.
+        let mut near = 0;
         for (index, &secs) in times_secs.iter().enumerate() {
-            let (key, share) = match self.times.place(secs) {
+            let (key, share) = match self.times.place_near(secs, near) {
                 None => continue,
                 Some(Place::At(key)) => {
+                    near = key;
                     found[index] = sound(key);
                     continue;
                 }
                 Some(Place::Between(key, share)) => (key, share),
             };
+            near = key;
             match path.unwrap_or_else(|| self.paths.of(key)) {
                 PathKind::Hold => found[index] = sound(key),
                 PathKind::Cubic if self.tangents.is_some() => {
@@ -128,49 +132,57 @@ pub fn turns_between(rotors: &[Rotor]) -> Vec<f64> {
     turns
 }
 
+/// The parts of `TILE` rotors, in streams.
+type Tile = [[f64; TILE]; 4];
+
 /// Interpolations of `N` rotors each that wait to be computed together.
 struct Queue<const N: usize> {
-    rotors: [Streams<f64, 4>; N],
-    shares: Vec<f64>,
-    results: Streams<f64, 4>,
+    rotors: Box<[Tile; N]>,
+    shares: Box<[f64; TILE]>,
+    results: Box<Tile>,
     /// Where each result goes.
-    indices: Vec<usize>,
+    indices: Box<[usize; TILE]>,
+    count: usize,
 }
 
 impl<const N: usize> Queue<N> {
     fn new() -> Self {
         Self {
-            rotors: std::array::from_fn(|_| Streams::zeros(TILE)),
-            shares: Vec::with_capacity(TILE),
-            results: Streams::zeros(TILE),
-            indices: Vec::with_capacity(TILE),
+            rotors: Box::new([[[0.0; TILE]; 4]; N]),
+            shares: Box::new([0.0; TILE]),
+            results: Box::new([[0.0; TILE]; 4]),
+            indices: Box::new([0; TILE]),
+            count: 0,
         }
     }
 
-    /// Whether it is full now.
+    /// Whether it is full now; it has to be flushed then.
     fn push(&mut self, index: usize, rotors: [Rotor; N], share: f64) -> bool {
-        let row = self.indices.len();
+        // It is below `TILE` anyway; this lets the compiler know.
+        let row = self.count % TILE;
         for (streams, rotor) in self.rotors.iter_mut().zip(rotors) {
-            streams.set(row, parts(rotor));
+            for (stream, part) in streams.iter_mut().zip(parts(rotor)) {
+                stream[row] = part;
+            }
         }
-        self.shares.push(share);
-        self.indices.push(index);
-        self.indices.len() == TILE
+        self.shares[row] = share;
+        self.indices[row] = index;
+        self.count = row + 1;
+        self.count == TILE
     }
 
     fn ready(&mut self) -> ([Parts<'_, f64, 4>; N], &[f64], PartsMut<'_, f64, 4>) {
-        let count = self.indices.len();
-        let rotors = self.rotors.each_ref().map(|streams| streams.parts().map(|stream| &stream[..count]));
-        let results = self.results.parts_mut().map(|stream| &mut stream[..count]);
-        (rotors, &self.shares, results)
+        let count = self.count;
+        let rotors = self.rotors.each_ref().map(|tile| tile.each_ref().map(|stream| &stream[..count]));
+        (rotors, &self.shares[..count], self.results.each_mut().map(|stream| &mut stream[..count]))
     }
 
     fn deliver(&mut self, found: &mut [Rotor]) {
-        for (row, index) in self.indices.drain(..).enumerate() {
-            let [s, yz, zx, xy] = self.results.get(row);
-            found[index] = Rotor::new(s, yz, zx, xy);
+        let [s, yz, zx, xy] = &*self.results;
+        for (row, &index) in self.indices[..self.count].iter().enumerate() {
+            found[index] = Rotor::new(s[row], yz[row], zx[row], xy[row]);
         }
-        self.shares.clear();
+        self.count = 0;
     }
 }
 

@@ -90,6 +90,24 @@ impl Times {
         Some(Place::Between(before, (time_secs - start) / (self.at(before + 1) - start)))
     }
 
+    /// As [`Times::place`], sooner where `time_secs` falls just after key `near` or the one behind it: for rows of rising times.
+    #[inline]
+    pub fn place_near(&self, time_secs: f64, near: usize) -> Option<Place> {
+        for before in [near, near.saturating_add(1)] {
+            if before.saturating_add(1) >= self.len() {
+                break;
+            }
+            let (start, end) = (self.at(before), self.at(before + 1));
+            if start == time_secs {
+                return Some(Place::At(before));
+            }
+            if start < time_secs && time_secs < end {
+                return Some(Place::Between(before, (time_secs - start) / (end - start)));
+            }
+        }
+        self.place(time_secs)
+    }
+
     /// The key nearest to `time_secs`, 0 without keys.
     pub fn nearest(&self, time_secs: f64) -> usize {
         match self.place(time_secs) {
@@ -127,6 +145,19 @@ mod tests {
             assert_eq!(times.place(times.at(frame)), Some(Place::At(frame)));
         }
         assert_eq!(times.place(f64::NAN), Some(Place::At(0)));
+    }
+
+    #[test]
+    fn a_good_or_a_bad_guess_changes_nothing() {
+        let listed: Vec<f64> = (0..50).map(|i| f64::from(i) * 0.1 + f64::from(i % 3) * 0.01).collect();
+        for times in [Times::Even { step_secs: 0.008_333, count: 50 }, Times::Listed(listed.into())] {
+            for step in -10..2000 {
+                let secs = 0.003 * f64::from(step);
+                for near in [0, 1, 17, 48, 49, 50, usize::MAX] {
+                    assert_eq!(times.place_near(secs, near), times.place(secs), "{secs} near {near}");
+                }
+            }
+        }
     }
 
     #[test]
