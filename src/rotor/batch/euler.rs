@@ -28,19 +28,29 @@ pub fn euler_rotors(level: Level, order: EulerOrder, angles: Parts<'_, f64, 3>, 
         #[inline(always)]
         || {
             if proper {
-                let lane = |angles| (rotor::<true>(angles, parity), MOST - size(angles));
-                each_row_guarded(angles, out, lane, exact);
+                each_row_guarded(
+                    angles,
+                    out,
+                    #[inline(always)]
+                    |angles| (rotor::<true>(angles, parity), MOST - size(angles)),
+                    exact,
+                );
             } else {
-                let lane = |angles| (rotor::<false>(angles, parity), MOST - size(angles));
-                each_row_guarded(angles, out, lane, exact);
+                each_row_guarded(
+                    angles,
+                    out,
+                    #[inline(always)]
+                    |angles| (rotor::<false>(angles, parity), MOST - size(angles)),
+                    exact,
+                );
             }
         },
     );
 }
 
 #[inline(always)]
-fn rotor<const PROPER: bool>(angles: [f64; 3], parity: f64) -> [f64; 4] {
-    let [(sa, ca), (sb, cb), (sc, cc)] = angles.map(half);
+fn rotor<const PROPER: bool>([a, b, c]: [f64; 3], parity: f64) -> [f64; 4] {
+    let [(sa, ca), (sb, cb), (sc, cc)] = [half(a), half(b), half(c)];
     if PROPER {
         let (sum_sine, sum_cosine) = (sa * cc + ca * sc, ca * cc - sa * sc);
         let (sine, cosine) = (sa * cc - ca * sc, ca * cc + sa * sc);
