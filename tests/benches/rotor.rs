@@ -192,12 +192,12 @@ fn squad(criterion: &mut Criterion) {
     ours(&mut group, |level, out| {
         batch::squad(level, ends.each_ref().map(Streams::parts), &narrow, out.parts_mut());
     });
-    let rows = quadruples(four.map(|rotors| glam_f32(rotors)), &t);
+    let rows = quadruples(&four.map(|rotors| glam_f32(rotors)), &t);
     peer(&mut group, "glam", &rows, Quat::IDENTITY, |([a, ia, ib, b], t)| {
         let t = *t as f32;
         a.slerp(*b, t).slerp(ia.slerp(*ib, t), 2.0 * t * (1.0 - t))
     });
-    let rows = quadruples(four.map(|rotors| ultraviolet_f32(rotors)), &t);
+    let rows = quadruples(&four.map(|rotors| ultraviolet_f32(rotors)), &t);
     peer(&mut group, "ultraviolet", &rows, Rotor3::identity(), |([a, ia, ib, b], t)| {
         let t = *t as f32;
         a.slerp(*b, t).slerp(ia.slerp(*ib, t), 2.0 * t * (1.0 - t))
@@ -209,18 +209,18 @@ fn squad(criterion: &mut Criterion) {
     ours(&mut group, |level, out| {
         batch::squad(level, ends.each_ref().map(Streams::parts), &t, out.parts_mut());
     });
-    let rows = quadruples(four.map(|rotors| glam_f64(rotors)), &t);
+    let rows = quadruples(&four.map(|rotors| glam_f64(rotors)), &t);
     peer(&mut group, "glam", &rows, DQuat::IDENTITY, |([a, ia, ib, b], t)| {
         a.slerp(*b, *t).slerp(ia.slerp(*ib, *t), 2.0 * t * (1.0 - t))
     });
-    let rows = quadruples(four.map(|rotors| ultraviolet_f64(rotors)), &t);
+    let rows = quadruples(&four.map(|rotors| ultraviolet_f64(rotors)), &t);
     peer(&mut group, "ultraviolet", &rows, DRotor3::identity(), |([a, ia, ib, b], t)| {
         a.slerp(*b, *t).slerp(ia.slerp(*ib, *t), 2.0 * t * (1.0 - t))
     });
     group.finish();
 }
 
-fn quadruples<T: Clone>(four: [Vec<T>; 4], t: &[f64]) -> Vec<([T; 4], f64)> {
+fn quadruples<T: Clone>(four: &[Vec<T>; 4], t: &[f64]) -> Vec<([T; 4], f64)> {
     t.iter().enumerate().map(|(i, t)| (four.each_ref().map(|rotors| rotors[i].clone()), *t)).collect()
 }
 
