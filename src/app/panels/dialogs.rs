@@ -11,6 +11,7 @@ use super::super::commands::{Command, HOLD_FOR_SOURCE, MORE_KEYS, Menu, TABLE};
 use super::super::file_picker::Purpose;
 use super::super::view_models::{LogBlock, Memo, counted, log_blocks, pass_rows};
 use super::Scope;
+use super::change_plot::change_plot_ui;
 use crate::exchange::csv::{NamedColumns, TimeUnit};
 use crate::exchange::disk;
 
@@ -342,6 +343,9 @@ fn export_sheet(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>) {
             let words = format!("{}: {}", row.title, row.problem.unwrap_or(row.change));
             ui.label(RichText::new(words).size(12.5).color(scope.look.faint));
         }
+    }
+    if let Some(evaluated) = evaluated {
+        change_plot_ui(ui, &evaluated.changes, &scope.look);
     }
     ui.add_space(2.0);
     let mut meant = path_ui(ui, form, &CLIPS, 130.0, scope.look.faint);

@@ -1,5 +1,6 @@
 //! The parts of the window. Each reads a [`Scope`] and asks for changes with commands.
 
+mod change_plot;
 mod curves;
 mod dialogs;
 mod joint_sheet;

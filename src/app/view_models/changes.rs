@@ -18,7 +18,13 @@ pub struct Changes {
     pub largest_deg: f64,
     /// The joint of the largest change.
     pub largest_joint: Option<String>,
+    /// How far poses move over time: for each of up to 400 equal stretches of the clip its start in seconds and the largest
+    /// turn of any joint in degrees. Empty where no pose moves.
+    pub over_time: Vec<[f64; 2]>,
 }
+
+/// As many stretches of time as a narrow plot can show.
+const MOST_POINTS: usize = 400;
 
 impl Changes {
     /// The sum of the changes of two clips.
@@ -30,6 +36,7 @@ impl Changes {
             frames: self.frames + other.frames,
             largest_deg: larger.largest_deg,
             largest_joint: larger.largest_joint.clone(),
+            over_time: larger.over_time.clone(),
         }
     }
 
@@ -52,6 +59,7 @@ impl Changes {
 pub fn changes(source: &Clip, result: &Clip) -> Changes {
     let mut found = Changes::default();
     let mut frames = BTreeSet::new();
+    let mut stretches = vec![0.0_f64; MOST_POINTS.min(result.grid.count())];
     for joint in 0..result.joints.len() {
         if source.same_joint(result, joint) {
             continue;
@@ -63,6 +71,10 @@ pub fn changes(source: &Clip, result: &Clip) -> Changes {
             frames.insert(result.grid.frame(time));
             let turn =
                 rotation_at(source, joint, time).turn_to(rotation_at(result, joint, time)).to_degrees();
+            let stretch = stretch_of(result.grid.frame(time), result.grid.count(), stretches.len());
+            if let Some(largest) = stretches.get_mut(stretch) {
+                *largest = largest.max(turn);
+            }
             if turn > found.largest_deg {
                 found.largest_deg = turn;
                 found.largest_joint = Some(result.skeleton.label(joint).to_owned());
@@ -70,5 +82,15 @@ pub fn changes(source: &Clip, result: &Clip) -> Changes {
         }
     }
     found.frames = frames.len();
+    if found.largest_deg > 0.0 {
+        let count = stretches.len();
+        let time = |stretch: usize| result.grid.time(stretch * result.grid.count() / count);
+        found.over_time = stretches.iter().enumerate().map(|(stretch, &deg)| [time(stretch), deg]).collect();
+    }
     found
+}
+
+/// Which of `stretches` equal parts of the clip a frame falls into.
+fn stretch_of(frame: usize, frames: usize, stretches: usize) -> usize {
+    (frame * stretches).checked_div(frames).unwrap_or(0).min(stretches.saturating_sub(1))
 }

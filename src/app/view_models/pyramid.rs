@@ -3,7 +3,7 @@
 
 use std::ops::Range;
 
-/// Values and, above them, levels of `[smallest, largest]`, each [`FACTOR`] times shorter. NaN is a gap.
+/// Values and, above them, levels of `[smallest, largest]`, each 8 times shorter. NaN is a gap.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct Pyramid {
     values: Vec<f32>,

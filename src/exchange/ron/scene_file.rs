@@ -200,7 +200,7 @@ fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
     }
 }
 
-/// The text that [`write`] writes; `path` is where it will stand.
+/// The text that [`write()`] writes; `path` is where it will stand.
 ///
 /// # Errors
 /// When a value can't be said in RON.

@@ -9,7 +9,7 @@ use super::streams::{Parts, PartsMut};
 /// The rotors of turns given as plane angles in radians, row by row: [`Rotor::from_plane_angles`] within 1e-15 rad
 /// (`f32`: 3e-7 rad), of any size.
 ///
-/// Sine and cosine of half the turn are polynomials of its square up to 180°, as far as [`log`] gives it; longer turns take
+/// Sine and cosine of half the turn are polynomials of its square up to 180°, as far as `log` gives it; longer turns take
 /// their time.
 ///
 /// # Panics
