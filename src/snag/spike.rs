@@ -48,6 +48,12 @@ const STEP_SIZES: f64 = 1.2;
 /// Unless the joint moves that fast near by too: so many usual steps for each key.
 const USUAL_STEPS: f64 = 2.0;
 
+/// A run that takes so many seconds, in and out, is as long as a quick flick of a foot or hand.
+const FLICK_SECS: f64 = 0.12;
+
+/// A flick swells: its weakest key lies off by less than this share of the median. A spike is off all along.
+const FLICK_SHARE: f64 = 0.6;
+
 /// Sound keys between two spikes that are looked at together.
 const NEXT_KEYS: usize = 3;
 
@@ -64,6 +70,8 @@ struct Run {
     last: usize,
     /// Distance of the run's keys from the way across, their median, in radians.
     size: f64,
+    /// Distance of the key of the run that lies nearest to the way across, in radians.
+    weakest: f64,
     /// Largest roughness near by with the run, in radians.
     peak: f64,
     /// Largest roughness that stays near by when the run is drawn anew.
@@ -171,6 +179,7 @@ fn weigh(rough: &Roughness, first: usize, last: usize) -> Run {
         first,
         last,
         size: off[off.len() / 2],
+        weakest: off[0],
         peak: near.map(|key| rough.residual[key]).fold(0.0, f64::max),
         rest: rest(rough, (first, last), None),
         across: rough.poses[first - 1].turn_to(rough.poses[last + 1]),
@@ -208,12 +217,15 @@ fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Op
     {
         return None;
     }
+    let span_secs = rough.secs[run.last + 1] - rough.secs[run.first - 1];
+    if span_secs >= FLICK_SECS && run.last > run.first && run.weakest < FLICK_SHARE * run.size {
+        return None;
+    }
     let usual = rough.usual_without(run.first, run.last);
     let score = (run.peak - usual.median) / usual.spread.max(LEAST_SPREAD_RAD);
     let gain = run.peak / run.rest.max(LEAST_SPREAD_RAD);
     // The acceleration that the roughness stands for, twice the distance in half the span's square.
-    let half_secs =
-        (rough.secs[run.last + 1] - rough.secs[run.first - 1]) / (run.last + 2 - run.first) as f64;
+    let half_secs = span_secs / (run.last + 2 - run.first) as f64;
     let least_gain = match 2.0 * run.peak / (FASTEST * half_secs * half_secs) {
         times if times > 40.0 => LEAST_GAIN_IMPOSSIBLE,
         times if times > 1.0 && score * gain >= CLEAR_PRODUCT && run.peak <= run.size => LEAST_GAIN_CLEAR,

@@ -641,6 +641,22 @@ fn a_spike_is_found_at_every_rate_and_with_uneven_keys() {
 }
 
 #[test]
+fn a_foot_that_pushes_off_once_a_stride_is_left_alone_at_low_rates() {
+    // A toe that bends and comes back within a tenth of a second: a few keys at these rates, and it swells.
+    for rate in [24.0, 25.0, 30.0] {
+        let bend_deg = |secs: f64| {
+            let from_push = (secs + 0.017).rem_euclid(0.93) - 0.45;
+            -10.0 - 0.8 * (6.0 * secs).sin() - 36.0 * (-(from_push / 0.038).powi(2)).exp()
+        };
+        let keys = (0..150).map(|key| Axis::X.rotor(bend_deg(f64::from(key) / rate).to_radians())).collect();
+        let times = Times::Listed((0..150).map(|key| f64::from(key) / rate).collect());
+        let mut clip = clip_of(vec![RotationTrack::from_rotors(times, keys)]);
+        clip.grid.rate = rate;
+        assert_eq!(all(&clip).snags, [], "{rate} a second");
+    }
+}
+
+#[test]
 fn a_held_track_may_jump() {
     let mut track = RotationTrack::from_rotors(even(60), flipped(&rotors(60), &[(20, 30)], Axis::Y));
     track.paths = Paths::Every(PathKind::Hold);
