@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use crate::rotor::{Axis, Bivector, EulerOrder, Rotor, slerp, squad, squad_inner_uneven};
+use crate::rotor::{Axis, Bivector, EulerOrder, Rotor, parabola_rate, slerp, squad, squad_inner_uneven};
 
 use super::times::{Place, Times};
 
@@ -331,9 +331,6 @@ fn aligned(keys: impl Iterator<Item = Rotor>) -> Arc<[Rotor]> {
 
 /// Inner points of squad with the three-point (parabola) rate at the key.
 fn inner_points(before: Rotor, key: Rotor, after: Rotor, before_secs: f64, after_secs: f64) -> [Rotor; 2] {
-    let from_before = (before.reverse() * key).plane_angles_as_signed();
-    let to_after = (key.reverse() * after).plane_angles_as_signed();
-    let rate = (to_after * (before_secs / after_secs) + from_before * (after_secs / before_secs))
-        * (1.0 / (before_secs + after_secs));
+    let rate = parabola_rate(before, key, after, before_secs, after_secs);
     squad_inner_uneven(before, key, after, before_secs, after_secs, rate)
 }

@@ -112,7 +112,9 @@ pub fn write(path: &Path, bytes: &[u8]) -> Result<(), DiskError> {
         _ => Path::new("."),
     };
     std::fs::create_dir_all(folder).map_err(failed)?;
-    let mut file = tempfile::Builder::new().prefix(".turnwright-").tempfile_in(folder).map_err(failed)?;
+    // The error's own words name the temporary file, which says nothing to whoever chose the target.
+    let plain = |error: io::Error| failed(io::Error::from(error.kind()));
+    let mut file = tempfile::Builder::new().prefix(".turnwright-").tempfile_in(folder).map_err(plain)?;
     file.write_all(bytes).and_then(|()| file.as_file().sync_all()).map_err(failed)?;
     let permissions =
         std::fs::metadata(path).map_or_else(|_| new_file_permissions(), |old| Some(old.permissions()));
