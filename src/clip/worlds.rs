@@ -22,7 +22,7 @@ enum Form {
 }
 
 impl Worlds {
-    /// The product of all turns down to a joint, at the time with this index. Scales do not enter.
+    /// The product of all turns down to a joint, at the time with this index. Of scales only mirroring ones enter.
     ///
     /// # Panics
     /// When there is no such joint or time.

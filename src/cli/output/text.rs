@@ -48,24 +48,28 @@ impl MendReport {
     }
 }
 
+/// `1 joint`, `2 joints`.
+fn counted(count: usize, what: &str) -> String {
+    format!("{count} {what}{}", if count == 1 { "" } else { "s" })
+}
+
 /// A heading for the clip and a line for each snag.
 pub(in crate::cli) fn clip(output: &mut Output, report: &ClipReport<'_>) -> io::Result<()> {
     let grid = &report.clip.grid;
     let found = match report.snags.len() {
         0 => "no snags".to_owned(),
-        1 => "1 snag".to_owned(),
-        count => format!("{count} snags"),
+        count => counted(count, "snag"),
     };
     let done = report.mends.map_or_else(String::new, |mends| {
         let left = report.snags.len() - mends.count();
         format!(", {} mended, {left} left, largest change {}", mends.count(), degrees(mends.max_change_rad))
     });
     output.line(format_args!(
-        "{}: {}: {} joints, {} frames at {} a second: {found}{done}",
+        "{}: {}: {}, {} at {} a second: {found}{done}",
         report.path.display(),
         report.label,
-        report.joints(),
-        grid.count(),
+        counted(report.joints(), "joint"),
+        counted(grid.count(), "frame"),
         short(grid.rate),
     ))?;
     let label = |snag: &Snag| report.clip.skeleton.label(snag.joint).to_owned();
