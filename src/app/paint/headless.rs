@@ -86,6 +86,15 @@ impl Headless {
         }
     }
 
+    /// How many triangles the last frame is made of: what a frame costs, whatever else the machine does.
+    pub fn n_triangles(&self) -> usize {
+        let count = |primitive: &egui::ClippedPrimitive| match &primitive.primitive {
+            egui::epaint::Primitive::Mesh(mesh) => mesh.indices.len() / 3,
+            egui::epaint::Primitive::Callback(_) => 0,
+        };
+        self.ctx.tessellate(self.shapes.clone(), self.pixels_per_point).iter().map(count).sum()
+    }
+
     /// Draws the last frame.
     pub fn picture(&mut self) -> Image {
         let primitives = self.ctx.tessellate(self.shapes.clone(), self.pixels_per_point);
