@@ -167,10 +167,14 @@ fn a_clip_is_cleaned_up_with_mouse_and_keyboard() {
     desk.press("ctrl+shift+z");
     desk.window(r"^\* deckhand.bvh - Turnwright");
     desk.press("ctrl+s");
-    std::thread::sleep(Duration::from_millis(800));
-    desk.press("Return");
     let saved = folder.path().join("deckhand.ron");
-    desk.wait("the saved scene", || saved.is_file().then_some(()));
+    desk.wait("the saved scene", || {
+        // The sheet may take a moment to appear; without it the key means nothing.
+        std::thread::sleep(Duration::from_millis(800));
+        desk.press("Return");
+        std::thread::sleep(Duration::from_millis(300));
+        saved.is_file().then_some(())
+    });
     desk.window("^deckhand.ron - Turnwright");
     desk.press("ctrl+q");
     let status = desk.wait("the end of the program", || program.0.try_wait().unwrap());
