@@ -54,6 +54,9 @@ const FLICK_SECS: f64 = 0.12;
 /// A flick swells: its weakest key lies off by less than this share of the median. A spike is off all along.
 const FLICK_SHARE: f64 = 0.6;
 
+/// A flick is no wider than this; what lies farther off is no motion of a foot or hand.
+const FLICK_RAD: f64 = 25.0 / 180.0 * PI;
+
 /// Sound keys between two spikes that are looked at together.
 const NEXT_KEYS: usize = 3;
 
@@ -218,7 +221,8 @@ fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Op
         return None;
     }
     let span_secs = rough.secs[run.last + 1] - rough.secs[run.first - 1];
-    if span_secs >= FLICK_SECS && run.last > run.first && run.weakest < FLICK_SHARE * run.size {
+    let swells = run.last > run.first && run.weakest < FLICK_SHARE * run.size;
+    if span_secs >= FLICK_SECS && run.size < FLICK_RAD && swells {
         return None;
     }
     let usual = rough.usual_without(run.first, run.last);
