@@ -21,8 +21,18 @@ impl RotationTrack {
     /// As [`RotationTrack::at_all`], with `path` in place of the track's own path kinds where it is given.
     pub fn at_all_by(&self, times_secs: &[f64], path: Option<PathKind>) -> Vec<Rotor> {
         // A few times don't pay for looking at all keys.
-        let keys = (4 * times_secs.len() > self.keys.len()).then(|| self.sound_keys());
-        let sound = |key: usize| keys.as_ref().map_or_else(|| self.sound_key(key), |keys| keys[key]);
+        let keys = if 4 * times_secs.len() > self.keys.len() {
+            Some(self.keys.sound())
+        } else {
+            self.keys.sound_if_made()
+        };
+        let sound = |key: usize| match keys {
+            Some(keys) => {
+                let [s, yz, zx, xy] = keys.get(key);
+                Rotor::new(s, yz, zx, xy)
+            }
+            None => self.sound_key(key),
+        };
         let mut found = vec![Rotor::IDENTITY; times_secs.len()];
         let (mut slerps, mut squads) = (Queue::<2>::new(), Queue::<4>::new());
         // The inner points of a segment are computed once for all times in it.
@@ -65,19 +75,6 @@ impl RotationTrack {
         slerps.flush(&mut found);
         squads.flush(&mut found);
         found
-    }
-
-    /// [`RotationTrack::sound_key`] of every key.
-    pub fn sound_keys(&self) -> Vec<Rotor> {
-        let mut last = None;
-        let mut keys: Vec<Option<Rotor>> = Vec::with_capacity(self.keys.len());
-        for key in self.keys.iter() {
-            last = key.try_normalize().or(last);
-            keys.push(last);
-        }
-        // Before the first sound key there is none to hold: that one serves.
-        let first = keys.iter().copied().flatten().next().unwrap_or(Rotor::IDENTITY);
-        keys.into_iter().map(|key| key.unwrap_or(first)).collect()
     }
 }
 
@@ -256,7 +253,9 @@ mod tests {
         let times: Vec<f64> = track.times.iter().collect();
         let alone: Vec<Rotor> = (0..40).map(|key| track.sound_key(key)).collect();
         assert_eq!(track.at_all(&times), alone);
-        assert_eq!(track.sound_keys(), alone);
+        let streams = track.keys.sound();
+        let parts: Vec<[f64; 4]> = (0..40).map(|key| streams.get(key)).collect();
+        assert_eq!(parts, alone.iter().map(|key| super::parts(*key)).collect::<Vec<_>>());
     }
 
     #[test]

@@ -5,6 +5,7 @@
 
 mod bulk;
 mod continuity;
+mod keys;
 mod resample;
 mod rotation_track;
 mod take;
@@ -14,6 +15,7 @@ mod worlds;
 
 pub use bulk::turns_between;
 pub use continuity::continuous_angles;
+pub use keys::Keys;
 pub use resample::{cut, resampled};
 pub use rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};
 pub use take::{Clip, FrameGrid, JointTracks};

@@ -8,6 +8,7 @@ use glam::DVec3;
 use crate::rotor::Rotor;
 
 use super::continuity::continuous_angles;
+use super::keys::Keys;
 use super::rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};
 use super::take::{Clip, FrameGrid, JointTracks};
 use super::times::{Place, Times};
@@ -132,7 +133,7 @@ fn rotation_at(track: &RotationTrack, times: &Times, at: &[f64]) -> RotationTrac
         }
     };
     let mut last = keys[0];
-    let keys: Arc<[Rotor]> = keys
+    let keys: Keys = keys
         .into_iter()
         .map(|key| {
             last = key.aligned_to(last);

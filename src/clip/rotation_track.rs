@@ -4,6 +4,7 @@ use std::sync::Arc;
 
 use crate::rotor::{Axis, Bivector, EulerOrder, Rotor, parabola_rate, slerp, squad, squad_inner_uneven};
 
+use super::keys::Keys;
 use super::times::{Place, Times};
 
 /// Which orientations a segment passes through on its way from one key to the next.
@@ -75,7 +76,7 @@ pub struct RotationTrack {
     /// Key times in seconds.
     pub times: Times,
     /// A rotor for each key, as stored.
-    pub keys: Arc<[Rotor]>,
+    pub keys: Keys,
     /// Path kinds of the segments.
     pub paths: Paths,
     /// In- and out-tangent of each key, per second, of the four numbers; for [`PathKind::Cubic`] alone.
@@ -86,7 +87,7 @@ pub struct RotationTrack {
 
 impl RotationTrack {
     /// A track of rotors with slerp between.
-    pub fn from_rotors(times: Times, keys: impl Into<Arc<[Rotor]>>) -> Self {
+    pub fn from_rotors(times: Times, keys: impl Into<Keys>) -> Self {
         Self {
             times,
             keys: keys.into(),
@@ -317,7 +318,7 @@ fn bits(rotor: Rotor) -> [u64; 4] {
 }
 
 /// Rotors made of angles have no sign of their own: each takes the one near the last finite one before it.
-fn aligned(keys: impl Iterator<Item = Rotor>) -> Arc<[Rotor]> {
+fn aligned(keys: impl Iterator<Item = Rotor>) -> Keys {
     let mut reference = Rotor::IDENTITY;
     keys.map(|key| {
         let own = key.aligned_to(reference);

@@ -1,0 +1,117 @@
+//! The rotors of a track's keys.
+
+use std::fmt;
+use std::ops::Deref;
+use std::sync::{Arc, OnceLock};
+
+use crate::rotor::Rotor;
+use crate::rotor::batch::Streams;
+
+/// The rotors of a track's keys as stored; to be read like a slice, shared when cloned.
+///
+/// Beside them lies what playing at many times needs of them, made when it is first asked for and shared with all clones:
+/// [`Keys::sound`]. Keys never change in place, so that it can't grow stale.
+#[derive(Clone)]
+pub struct Keys(Arc<Inner>);
+
+struct Inner {
+    stored: Arc<[Rotor]>,
+    sound: OnceLock<Streams<f64, 4>>,
+}
+
+impl Keys {
+    /// [`super::RotationTrack::sound_key`] of every key, in streams: unit, and what is not finite is its nearest sound
+    /// neighbour before, else behind. It takes as much memory as the keys themselves.
+    pub fn sound(&self) -> &Streams<f64, 4> {
+        self.0.sound.get_or_init(|| {
+            // Before the first sound key there is none to hold: that one serves.
+            let mut last = self.iter().find_map(|key| key.try_normalize()).unwrap_or(Rotor::IDENTITY);
+            Streams::from_rows(self.iter().map(|key| {
+                last = key.try_normalize().unwrap_or(last);
+                [last.s, last.yz, last.zx, last.xy]
+            }))
+        })
+    }
+
+    /// [`Keys::sound`] if it is there already.
+    pub(super) fn sound_if_made(&self) -> Option<&Streams<f64, 4>> {
+        self.0.sound.get()
+    }
+}
+
+impl Deref for Keys {
+    type Target = [Rotor];
+
+    fn deref(&self) -> &[Rotor] {
+        &self.0.stored
+    }
+}
+
+impl From<Arc<[Rotor]>> for Keys {
+    fn from(stored: Arc<[Rotor]>) -> Self {
+        Self(Arc::new(Inner { stored, sound: OnceLock::new() }))
+    }
+}
+
+impl From<Vec<Rotor>> for Keys {
+    fn from(stored: Vec<Rotor>) -> Self {
+        Arc::<[Rotor]>::from(stored).into()
+    }
+}
+
+impl<const N: usize> From<[Rotor; N]> for Keys {
+    fn from(stored: [Rotor; N]) -> Self {
+        Arc::<[Rotor]>::from(stored).into()
+    }
+}
+
+impl From<&[Rotor]> for Keys {
+    fn from(stored: &[Rotor]) -> Self {
+        Arc::<[Rotor]>::from(stored).into()
+    }
+}
+
+impl FromIterator<Rotor> for Keys {
+    fn from_iter<I: IntoIterator<Item = Rotor>>(rotors: I) -> Self {
+        rotors.into_iter().collect::<Arc<[Rotor]>>().into()
+    }
+}
+
+impl PartialEq for Keys {
+    fn eq(&self, other: &Self) -> bool {
+        self[..] == other[..]
+    }
+}
+
+impl fmt::Debug for Keys {
+    fn fmt(&self, formatter: &mut fmt::Formatter<'_>) -> fmt::Result {
+        self[..].fmt(formatter)
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_change_never_meets_the_old_streams() {
+        let keys = Keys::from([Rotor::new(0.0, 2.0, 0.0, 0.0), Rotor::new(f64::NAN, 0.0, 0.0, 0.0)]);
+        assert_eq!(keys.sound().get(0), [0.0, 1.0, 0.0, 0.0]);
+        assert_eq!(keys.sound().get(1), [0.0, 1.0, 0.0, 0.0]);
+        assert!(keys.clone().sound_if_made().is_some(), "clones share what was made");
+        let mut changed = keys.to_vec();
+        changed[1] = Rotor::new(0.0, 0.0, 0.0, -3.0);
+        let changed = Keys::from(changed);
+        assert!(changed.sound_if_made().is_none());
+        assert_eq!(changed.sound().get(1), [0.0, 0.0, 0.0, -1.0]);
+    }
+
+    #[test]
+    fn before_the_first_sound_key_that_one_serves() {
+        let broken = Rotor::new(f64::NAN, 0.0, 0.0, 0.0);
+        let keys: Keys = [broken, Rotor::new(0.0, 0.0, 0.5, 0.0)].into_iter().collect();
+        assert_eq!(keys.sound().get(0), [0.0, 0.0, 1.0, 0.0]);
+        assert_eq!(Keys::from([broken]).sound().get(0), [1.0, 0.0, 0.0, 0.0]);
+        assert!(Keys::from(Vec::new()).sound().is_empty());
+    }
+}
