@@ -6,7 +6,8 @@ use std::sync::{Arc, Mutex};
 use crate::clip::Clip;
 use crate::exchange::Source;
 use crate::scene::{
-    ClipWork, Document, Evaluation, Evaluator, History, Pass, PassId, PassStep, Revision, SnagMark, SourceRef,
+    ClipWork, Document, Evaluation, Evaluator, History, Library, Loaded, Pass, PassId, PassStep, Revision,
+    SnagMark, SourceRef,
 };
 use crate::snag::Snag;
 
@@ -43,6 +44,8 @@ impl SourceState {
 pub struct Evaluated {
     /// The passes that were run.
     pub passes: Vec<Pass>,
+    /// The passes of other clips whose results they needed, by work.
+    pub behind: Vec<(usize, Vec<Pass>)>,
     /// What they gave.
     pub evaluation: Arc<Evaluation>,
     /// Their sum in a few numbers.
@@ -112,6 +115,25 @@ impl Project {
         self.sources.get(work.source)?.source()?.clips.get(work.clip)
     }
 
+    /// The document with its open files, for passes that need other clips.
+    pub fn library(&self) -> Library {
+        let loaded =
+            |source: &SourceState| source.source().map(|source| Loaded::of_clips(source.clips.clone()));
+        let evaluators = self.findings.iter().map(|findings| Arc::clone(&findings.evaluator)).collect();
+        let sources = self.sources.iter().map(loaded).collect();
+        Library::new(Arc::clone(self.document()), sources).with_evaluators(evaluators)
+    }
+
+    /// The passes of other clips that a work's result hangs on, by work.
+    pub fn passes_behind(&self, work: usize) -> Vec<(usize, Vec<Pass>)> {
+        let document = self.document();
+        document
+            .leans_on(work)
+            .into_iter()
+            .map(|other| (other, document.works[other].passes.clone()))
+            .collect()
+    }
+
     /// The result of a work as far as it is known: until passes have been run, what they gave before.
     pub fn result_clip(&self, work: usize) -> Option<&Arc<Clip>> {
         let evaluated = self.findings.get(work).and_then(|findings| findings.evaluated.as_ref());
@@ -178,8 +200,8 @@ pub struct Bench {
     pub project: Option<Project>,
     /// What is looked at.
     pub session: Session,
-    /// A pass's amount while its slider is dragged.
-    pub preview: Option<(PassId, f64)>,
+    /// What a pass would do while one of its parameters is dragged; the document changes on letting go.
+    pub preview: Option<(PassId, PassStep)>,
     /// The turn map.
     pub heat: Option<FromClips<HeatKind, Arc<HeatMap>>>,
     /// The curves of the chosen joint.
@@ -246,13 +268,12 @@ impl Bench {
         self.snags().iter().find(|snag| SnagMark::of(snag) == mark)
     }
 
-    /// The passes to run: those of the document, with the amount that is being dragged.
+    /// The passes to run: those of the document, with the parameters that are being dragged.
     pub fn passes(&self) -> Vec<Pass> {
         let mut passes = self.work().map(|work| work.passes.clone()).unwrap_or_default();
-        if let Some((id, amount)) = self.preview {
-            for pass in passes.iter_mut().filter(|pass| pass.id == id) {
-                let PassStep::Mend(mend) = &mut pass.step;
-                mend.amount = amount;
+        if let Some((id, step)) = &self.preview {
+            for pass in passes.iter_mut().filter(|pass| pass.id == *id) {
+                pass.step = step.clone();
             }
         }
         passes

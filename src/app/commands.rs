@@ -6,7 +6,7 @@ use egui::{Key, KeyboardShortcut, Modifiers};
 
 use crate::exchange::csv::{NamedColumns, TimeUnit};
 use crate::raster::Camera;
-use crate::scene::{Edit, PassId};
+use crate::scene::{Edit, PassId, PassStep};
 
 use super::file_picker::Purpose;
 use super::jobs::Slot;
@@ -617,8 +617,8 @@ pub enum Command {
     SetOrder(SnagOrder),
     /// Hide or show what hangs below a joint.
     Fold(usize),
-    /// Take a part of a pass while a slider is dragged; nothing is recorded until it is let go.
-    PreviewAmount(PassId, f64),
+    /// Show a pass with other parameters while one is dragged; nothing is recorded until it is let go.
+    PreviewPass(PassId, Box<PassStep>),
     /// Go to a step of the history.
     GoToStep(usize),
     /// Take away the message on top.

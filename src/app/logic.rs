@@ -52,7 +52,7 @@ impl Window {
                     folded.insert(joint);
                 }
             }
-            Command::PreviewAmount(pass, amount) => self.bench.preview = Some((pass, amount)),
+            Command::PreviewPass(pass, step) => self.bench.preview = Some((pass, *step)),
             Command::GoToStep(step) => self.go_to_step(step),
             Command::Dismiss(index) => {
                 if index < self.messages.len() {

@@ -5,7 +5,7 @@ use std::sync::Arc;
 
 use crate::clip::Clip;
 use crate::exchange::{self, ClipAddress, OpenOptions, Source, disk, ron};
-use crate::scene::Evaluator;
+use crate::scene::{Document, Library, Loaded};
 
 use super::error::CliError;
 use super::output::Output;
@@ -116,35 +116,47 @@ fn open_scene(
     output: &mut Output,
 ) -> Result<Vec<Input>, CliError> {
     let mut scene = ron::read(&address.path)?;
-    let mut inputs = Vec::new();
-    for (index, reference) in scene.document.sources.clone().into_iter().enumerate() {
+    let mut sources = Vec::new();
+    for reference in &scene.document.sources {
         let source = exchange::open(&reference.path, options)?;
         if source.sha256 != reference.sha256 {
             output.note(&reference.path, "has changed since the scene was saved; its passes may not fit");
         }
+        sources.push(source);
+    }
+    let library = |document: &Document| {
+        Library::new(
+            Arc::new(document.clone()),
+            sources.iter().map(|source| Some(Loaded::of_clips(source.clips.clone()))).collect(),
+        )
+    };
+    let unfitted = library(&scene.document);
+    for work in 0..scene.document.works.len() {
+        let Some(original) = unfitted.source_clip(work) else { continue };
+        for label in scene.fit(work, &original.skeleton, &unfitted) {
+            let text = format!("joint `{label}` is no longer there; what names it is left out");
+            output.note(&address.path, &text);
+        }
+    }
+    let library = library(&scene.document);
+    let mut inputs = Vec::new();
+    for (index, source) in sources.into_iter().enumerate() {
         let mut results = source.clips.clone();
         let mut chosen = Vec::new();
-        for work in 0..scene.document.works.len() {
-            let (of, clip) = (scene.document.works[work].source, scene.document.works[work].clip);
-            let Some(original) = source.clips.get(clip).filter(|_| of == index) else { continue };
-            for label in scene.fit(work, &original.skeleton) {
-                output.note(
-                    &address.path,
-                    &format!("joint `{label}` is no longer there; its mends are left out"),
-                );
+        for (work, own) in scene.document.works.iter().enumerate() {
+            if own.source != index {
+                continue;
             }
-            let evaluation = Evaluator::default().evaluate(original, &scene.document.works[work].passes);
+            let Some(evaluation) = library.evaluate(work) else { continue };
             for problem in evaluation.stages.iter().filter_map(|stage| stage.problem.as_ref()) {
                 output.note(&address.path, &format!("{problem}; the pass is left out"));
             }
-            results[clip] = evaluation.result;
+            results[own.clip] = evaluation.result;
             let is_meant = address.clip.as_ref().is_none_or(|wanted| {
-                *wanted == scene.document.works[work].name
-                    || *wanted == source.clip_label(clip)
-                    || *wanted == work.to_string()
+                *wanted == own.name || *wanted == source.clip_label(own.clip) || *wanted == work.to_string()
             });
             if is_meant {
-                chosen.push(clip);
+                chosen.push(own.clip);
             }
         }
         if !chosen.is_empty() {

@@ -114,6 +114,11 @@ impl Clip {
         Self { joints, ..self.clone() }
     }
 
+    /// Whether two clips move the same skeleton, so that joint numbers mean the same in both.
+    pub fn has_skeleton_of(&self, other: &Self) -> bool {
+        Arc::ptr_eq(&self.skeleton, &other.skeleton) || self.skeleton == other.skeleton
+    }
+
     /// Whether a joint's tracks are the very same, shared or bit for bit.
     pub fn same_joint(&self, other: &Self, joint: usize) -> bool {
         match (self.joints.get(joint), other.joints.get(joint)) {

@@ -1,10 +1,11 @@
 //! The document: which files, which clips, which passes. Small, so that undo can keep many of them.
 
+use std::collections::BTreeSet;
 use std::path::PathBuf;
 
 use crate::snag::{Snag, SnagKind};
 
-use super::pass::{MendPass, Pass, PassId, PassStep, SnagMark};
+use super::pass::{ClipRef, MendPass, Need, Pass, PassId, SnagMark};
 
 /// A file the document was made from.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -47,9 +48,22 @@ impl ClipWork {
 
     /// The pass that mends this kind.
     pub fn mend_pass(&self, kind: SnagKind) -> Option<&MendPass> {
-        self.passes.iter().find_map(|pass| match &pass.step {
-            PassStep::Mend(mend) => (mend.kind == kind).then_some(mend),
-        })
+        self.passes.iter().filter_map(|pass| pass.step.as_mend()).find(|mend| mend.kind == kind)
+    }
+
+    /// All snags that a pass mends, switched on or not.
+    pub fn mended(&self) -> impl Iterator<Item = &Snag> {
+        self.passes.iter().filter_map(|pass| pass.step.as_mend()).flat_map(|mend| &mend.snags)
+    }
+
+    /// The id that the next new pass gets.
+    pub fn next_pass_id(&self) -> PassId {
+        PassId(self.passes.iter().map(|pass| pass.id.0.saturating_add(1)).max().unwrap_or(0))
+    }
+
+    /// The pass of that id.
+    pub fn pass(&self, id: PassId) -> Option<&Pass> {
+        self.passes.iter().find(|pass| pass.id == id)
     }
 
     /// Whether a pass mends this snag, switched on or not.
@@ -62,7 +76,8 @@ impl ClipWork {
         self.left.contains(&mark)
     }
 
-    /// Adds snags to the pass of their kind. New passes stand in mending order before all later kinds.
+    /// Adds snags to the pass of their kind. New passes stand in mending order before all later kinds, and before all
+    /// passes that are no mends, which see the clip mended.
     pub(super) fn add_mends(&mut self, snags: &[Snag]) {
         for snag in snags {
             let mark = SnagMark::of(snag);
@@ -70,32 +85,50 @@ impl ClipWork {
             if self.mends(mark) {
                 continue;
             }
-            let own = self.passes.iter_mut().find_map(|pass| match &mut pass.step {
-                PassStep::Mend(mend) => (mend.kind == snag.kind).then_some(mend),
-            });
-            if let Some(pass) = own {
-                pass.snags.push(snag.clone());
+            let mut passes = self.passes.iter_mut().filter_map(|pass| pass.step.as_mend_mut());
+            if let Some(own) = passes.find(|mend| mend.kind == snag.kind) {
+                own.snags.push(snag.clone());
                 continue;
             }
-            let id = PassId(self.passes.iter().map(|pass| pass.id.0 + 1).max().unwrap_or(0));
-            let later = |pass: &Pass| match &pass.step {
-                PassStep::Mend(mend) => mend.kind > snag.kind,
-            };
+            let id = self.next_pass_id();
+            let later = |pass: &Pass| pass.step.as_mend().is_none_or(|mend| mend.kind > snag.kind);
             let place = self.passes.iter().position(later).unwrap_or(self.passes.len());
-            let step = PassStep::Mend(MendPass::new(snag.kind, vec![snag.clone()]));
+            let step = MendPass::new(snag.kind, vec![snag.clone()]).into();
             self.passes.insert(place, Pass { id, on: true, step });
         }
     }
 
     /// Takes snags out of their passes; passes left empty go.
     pub(super) fn remove_mends(&mut self, marks: &[SnagMark]) {
-        for pass in &mut self.passes {
-            match &mut pass.step {
-                PassStep::Mend(mend) => mend.snags.retain(|snag| !marks.contains(&SnagMark::of(snag))),
+        for mend in self.passes.iter_mut().filter_map(|pass| pass.step.as_mend_mut()) {
+            mend.snags.retain(|snag| !marks.contains(&SnagMark::of(snag)));
+        }
+        self.passes.retain(|pass| pass.step.as_mend().is_none_or(|mend| !mend.snags.is_empty()));
+    }
+}
+
+impl Document {
+    /// The work on a clip.
+    pub fn work_on(&self, clip: ClipRef) -> Option<usize> {
+        self.works.iter().position(|work| work.source == clip.source && work.clip == clip.clip)
+    }
+
+    /// The works whose results the passes of `work` need, and what those need in turn, in rising order. A work that is
+    /// among its own needs leans on itself, and so has no result that could be told.
+    pub fn leans_on(&self, work: usize) -> BTreeSet<usize> {
+        let mut found = BTreeSet::new();
+        let mut open = vec![work];
+        while let Some(next) = open.pop() {
+            let passes = self.works.get(next).map_or(&[][..], |work| &work.passes);
+            for need in passes.iter().flat_map(|pass| pass.step.kind().needs()) {
+                if let Need::Clip(clip) = need
+                    && let Some(other) = self.work_on(clip)
+                    && found.insert(other)
+                {
+                    open.push(other);
+                }
             }
         }
-        self.passes.retain(|pass| match &pass.step {
-            PassStep::Mend(mend) => !mend.snags.is_empty(),
-        });
+        found
     }
 }

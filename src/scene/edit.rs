@@ -3,7 +3,7 @@
 use crate::snag::Snag;
 
 use super::document::{ClipWork, Document, SourceRef};
-use super::pass::{PassId, PassStep, SnagMark};
+use super::pass::{Pass, PassId, PassStep, Scope, SnagMark};
 
 /// One change of a document. `work` is the index of a clip's work.
 #[derive(Clone, Debug, PartialEq)]
@@ -45,7 +45,35 @@ pub enum Edit {
         /// On or off.
         on: bool,
     },
-    /// Take so much of a mend pass's change, 0 to 1.
+    /// Put a new pass into the list. Its id is the work's [`ClipWork::next_pass_id`] of before.
+    AddPass {
+        /// Of which clip.
+        work: usize,
+        /// What it does.
+        step: PassStep,
+        /// Its index; the end when larger.
+        at: usize,
+    },
+    /// Give a pass other parameters. While they are dragged the window shows a preview and commits this on letting go;
+    /// whatever can't know the end of a stroke commits with [`History::commit_stroke`](super::History::commit_stroke).
+    ChangePass {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        pass: PassId,
+        /// What it does from now on.
+        step: PassStep,
+    },
+    /// Let a pass act elsewhere.
+    SetScope {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        pass: PassId,
+        /// Where.
+        scope: Scope,
+    },
+    /// Take so much of a pass's change, 0 to 1.
     SetAmount {
         /// Of which clip.
         work: usize,
@@ -106,6 +134,24 @@ pub enum EditError {
         /// How many there are.
         count: usize,
     },
+    /// A pass that is taken whole or not at all.
+    #[error("expected a pass that can be taken in part, found {title}")]
+    NoAmount {
+        /// The pass.
+        title: String,
+    },
+    /// A pass that acts where it acts.
+    #[error("expected a pass that can act on a part of the clip, found {title}")]
+    NoScope {
+        /// The pass.
+        title: String,
+    },
+    /// The clip would need its own result.
+    #[error("expected passes that need other clips only, found one that needs `{name}` itself in the end")]
+    Circle {
+        /// The clip.
+        name: String,
+    },
     /// An amount outside its range.
     #[error("expected an amount from 0 to 1, found {0}")]
     Amount(f64),
@@ -126,6 +172,9 @@ impl Edit {
             Self::Reconsider { marks, .. } => counted("Reconsider", marks.len()),
             Self::SwitchPass { on: true, .. } => "Switch pass on".to_owned(),
             Self::SwitchPass { on: false, .. } => "Switch pass off".to_owned(),
+            Self::AddPass { step, .. } => format!("Add pass: {}", step.title()),
+            Self::ChangePass { step, .. } => format!("Change pass: {}", step.title()),
+            Self::SetScope { .. } => "Set where a pass acts".to_owned(),
             Self::SetAmount { amount, .. } => format!("Set amount to {:.0} %", amount * 100.0),
             Self::MovePass { .. } => "Move pass".to_owned(),
             Self::RemovePass { .. } => "Remove pass".to_owned(),
@@ -136,7 +185,8 @@ impl Edit {
     /// The document after this edit.
     ///
     /// # Errors
-    /// When the edit names a clip, pass or source that is not there, or an amount outside its range.
+    /// When the edit names a clip, pass or source that is not there, an amount outside its range, or a clip's own result among what it
+    /// needs.
     pub fn apply(&self, document: &Document) -> Result<Document, EditError> {
         let mut next = document.clone();
         match self {
@@ -156,15 +206,37 @@ impl Edit {
                 let place = place_of(passes, *pass)?;
                 passes[place].on = *on;
             }
+            Self::AddPass { work, step, at } => {
+                let own = work_at(&mut next, *work)?;
+                let place = (*at).min(own.passes.len());
+                let id = own.next_pass_id();
+                own.passes.insert(place, Pass { id, on: true, step: step.clone() });
+                check_circle(&next, *work)?;
+            }
+            Self::ChangePass { work, pass, step } => {
+                let passes = &mut work_at(&mut next, *work)?.passes;
+                let place = place_of(passes, *pass)?;
+                passes[place].step = step.clone();
+                check_circle(&next, *work)?;
+            }
+            Self::SetScope { work, pass, scope } => {
+                let passes = &mut work_at(&mut next, *work)?.passes;
+                let place = place_of(passes, *pass)?;
+                let title = passes[place].step.title();
+                let own = passes[place].step.kind_mut().scope_mut();
+                *own.ok_or(EditError::NoScope { title })? = scope.clone();
+            }
             Self::SetAmount { work, pass, amount } => {
                 if !(0.0..=1.0).contains(amount) {
                     return Err(EditError::Amount(*amount));
                 }
                 let passes = &mut work_at(&mut next, *work)?.passes;
                 let place = place_of(passes, *pass)?;
-                match &mut passes[place].step {
-                    PassStep::Mend(mend) => mend.amount = *amount,
+                let step = &mut passes[place].step;
+                if step.kind().amount().is_none() {
+                    return Err(EditError::NoAmount { title: step.title() });
                 }
+                step.kind_mut().set_amount(*amount);
             }
             Self::MovePass { work, pass, to } => {
                 let passes = &mut work_at(&mut next, *work)?.passes;
@@ -185,12 +257,20 @@ impl Edit {
     }
 }
 
+fn check_circle(document: &Document, work: usize) -> Result<(), EditError> {
+    if document.leans_on(work).contains(&work) {
+        let name = document.works[work].name.clone();
+        return Err(EditError::Circle { name });
+    }
+    Ok(())
+}
+
 fn work_at(document: &mut Document, work: usize) -> Result<&mut ClipWork, EditError> {
     let count = document.works.len();
     document.works.get_mut(work).ok_or(EditError::NoSuchWork { work, count })
 }
 
-fn place_of(passes: &[super::Pass], pass: PassId) -> Result<usize, EditError> {
+fn place_of(passes: &[Pass], pass: PassId) -> Result<usize, EditError> {
     let error = EditError::NoSuchPass { pass, count: passes.len() };
     passes.iter().position(|own| own.id == pass).ok_or(error)
 }

@@ -4,8 +4,9 @@ use std::sync::Arc;
 
 use crate::clip::Clip;
 use crate::mend;
+use crate::skeleton::Skeleton;
 
-use super::pass::{Pass, PassId};
+use super::pass::{Need, Others, Pass, PassId};
 
 /// What one pass did.
 #[derive(Clone, Debug)]
@@ -14,10 +15,15 @@ pub struct Stage {
     pub pass: PassId,
     /// The clip after it.
     pub result: Arc<Clip>,
-    /// Joints whose numbers it changed.
+    /// Joints whose numbers it changed; all joints of the result where it has another skeleton.
     pub joints_changed: usize,
-    /// The largest change of an orientation at a key, in radians.
+    /// The largest change of an orientation, in radians, at keys and in the middle between them; 0 where the result has
+    /// another skeleton and the two can't be compared.
     pub change_rad: f64,
+    /// The result has another skeleton than the clip before.
+    pub has_other_skeleton: bool,
+    /// What is worth telling, a sentence each.
+    pub notes: Vec<String>,
     /// Why it did nothing, where it does not fit.
     pub problem: Option<String>,
 }
@@ -33,18 +39,54 @@ pub struct Evaluation {
     pub stages: Vec<Stage>,
 }
 
+/// What a pass needed, as it was when it was run.
+#[derive(Clone, Debug)]
+enum Given {
+    Clip(Option<Arc<Clip>>),
+    Skeleton(Option<Arc<Skeleton>>),
+}
+
+impl PartialEq for Given {
+    /// Whether both are the very same.
+    fn eq(&self, other: &Self) -> bool {
+        fn same<T>(a: Option<&Arc<T>>, b: Option<&Arc<T>>) -> bool {
+            match (a, b) {
+                (Some(a), Some(b)) => Arc::ptr_eq(a, b),
+                (None, None) => true,
+                _ => false,
+            }
+        }
+        match (self, other) {
+            (Self::Clip(a), Self::Clip(b)) => same(a.as_ref(), b.as_ref()),
+            (Self::Skeleton(a), Self::Skeleton(b)) => same(a.as_ref(), b.as_ref()),
+            _ => false,
+        }
+    }
+}
+
+/// A pass that was run, and what it needed.
+type Run = (Pass, Vec<Given>);
+
 /// Evaluates pass lists and remembers the last one, so that only what changed is computed anew.
 #[derive(Debug, Default)]
 pub struct Evaluator {
-    last: Option<(Vec<Pass>, Evaluation)>,
+    last: Option<(Vec<Run>, Evaluation)>,
 }
 
 impl Evaluator {
-    /// The result of `passes` on `source`.
+    /// The result of `passes` on `source`. Passes ask `others` for further clips.
     ///
-    /// Passes equal to those of the call before, on the same source, are not run again.
-    pub fn evaluate(&mut self, source: &Arc<Clip>, passes: &[Pass]) -> Evaluation {
-        let on: Vec<Pass> = passes.iter().filter(|pass| pass.on).cloned().collect();
+    /// Passes equal to those of the call before, on the same source and with the same further clips, are not run again.
+    pub fn evaluate(&mut self, source: &Arc<Clip>, passes: &[Pass], others: &dyn Others) -> Evaluation {
+        let given = |need| match need {
+            Need::Clip(clip) => Given::Clip(others.clip(clip)),
+            Need::Skeleton(source) => Given::Skeleton(others.skeleton(source)),
+        };
+        let on: Vec<Run> = passes
+            .iter()
+            .filter(|pass| pass.on)
+            .map(|pass| (pass.clone(), pass.step.kind().needs().into_iter().map(given).collect()))
+            .collect();
         let mut stages: Vec<Stage> = match &self.last {
             Some((known, evaluation)) if Arc::ptr_eq(&evaluation.source, source) => {
                 let same = known.iter().zip(&on).take_while(|(before, now)| before == now).count();
@@ -52,9 +94,9 @@ impl Evaluator {
             }
             _ => Vec::new(),
         };
-        for pass in &on[stages.len()..] {
+        for (pass, _) in &on[stages.len()..] {
             let before = stages.last().map_or(source, |stage| &stage.result).clone();
-            stages.push(run(pass, &before));
+            stages.push(run(pass, &before, others));
         }
         let result = stages.last().map_or(source, |stage| &stage.result).clone();
         let evaluation = Evaluation { source: source.clone(), result, stages };
@@ -63,27 +105,40 @@ impl Evaluator {
     }
 }
 
-fn run(pass: &Pass, before: &Arc<Clip>) -> Stage {
-    match pass.step.apply(before) {
-        Ok(after) => {
-            let changed: Vec<usize> =
-                (0..after.joints.len()).filter(|&joint| !after.same_joint(before, joint)).collect();
-            let change_rad =
-                changed.iter().map(|&joint| mend::change_rad(before, &after, joint)).fold(0.0, f64::max);
-            Stage {
+fn run(pass: &Pass, before: &Arc<Clip>, others: &dyn Others) -> Stage {
+    let outcome = match pass.step.kind().apply(before, others) {
+        Ok(outcome) => outcome,
+        Err(error) => {
+            return Stage {
                 pass: pass.id,
-                result: Arc::new(after),
-                joints_changed: changed.len(),
-                change_rad,
-                problem: None,
-            }
+                result: before.clone(),
+                joints_changed: 0,
+                change_rad: 0.0,
+                has_other_skeleton: false,
+                notes: Vec::new(),
+                problem: Some(error.to_string()),
+            };
         }
-        Err(error) => Stage {
-            pass: pass.id,
-            result: before.clone(),
-            joints_changed: 0,
-            change_rad: 0.0,
-            problem: Some(error.to_string()),
-        },
+    };
+    let after = outcome.clip;
+    let has_other_skeleton = !before.has_skeleton_of(&after);
+    let changed: Vec<usize> = if has_other_skeleton {
+        after.skeleton.listed().collect()
+    } else {
+        (0..after.joints.len()).filter(|&joint| !after.same_joint(before, joint)).collect()
+    };
+    let change_rad = if has_other_skeleton {
+        0.0
+    } else {
+        changed.iter().map(|&joint| mend::change_rad(before, &after, joint)).fold(0.0, f64::max)
+    };
+    Stage {
+        pass: pass.id,
+        result: Arc::new(after),
+        joints_changed: changed.len(),
+        change_rad,
+        has_other_skeleton,
+        notes: outcome.notes,
+        problem: None,
     }
 }

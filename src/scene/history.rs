@@ -30,6 +30,8 @@ pub struct History {
     current: usize,
     saved: Option<Revision>,
     next: u64,
+    /// The stroke that made the current step, while it may still go on.
+    stroke: Option<u64>,
 }
 
 impl History {
@@ -37,7 +39,7 @@ impl History {
     pub fn new(document: Document) -> Self {
         let revision = Revision(0);
         let step = Step { label: "Open".to_owned(), revision, document: Arc::new(document) };
-        Self { steps: vec![step], current: 0, saved: Some(revision), next: 1 }
+        Self { steps: vec![step], current: 0, saved: Some(revision), next: 1, stroke: None }
     }
 
     /// The current document.
@@ -60,19 +62,42 @@ impl History {
     /// # Errors
     /// When the edit does not fit; nothing changes then.
     pub fn commit(&mut self, edit: &Edit) -> Result<(), EditError> {
+        self.stroke = None;
         let document = edit.apply(self.document())?;
         if document == **self.document() {
             return Ok(());
         }
         self.steps.truncate(self.current + 1);
-        let revision = Revision(self.next);
-        self.next += 1;
+        let revision = self.new_revision();
         self.steps.push(Step { label: edit.label(), revision, document: Arc::new(document) });
         if self.steps.len() > MOST_STEPS {
             self.steps.remove(0);
         }
         self.current = self.steps.len() - 1;
         Ok(())
+    }
+
+    /// As [`History::commit`], for one of many edits of one stroke (an arrow key held down, a wheel turned): as long as
+    /// nothing else is committed, undone or saved between, they are one step. `stroke` tells strokes apart.
+    ///
+    /// # Errors
+    /// As [`History::commit`].
+    pub fn commit_stroke(&mut self, edit: &Edit, stroke: u64) -> Result<(), EditError> {
+        if self.stroke != Some(stroke) || self.current + 1 != self.steps.len() {
+            let before = self.revision();
+            self.commit(edit)?;
+            self.stroke = (before != self.revision()).then_some(stroke);
+            return Ok(());
+        }
+        let document = Arc::new(edit.apply(self.document())?);
+        let revision = self.new_revision();
+        self.steps[self.current] = Step { label: edit.label(), revision, document };
+        Ok(())
+    }
+
+    fn new_revision(&mut self) -> Revision {
+        self.next += 1;
+        Revision(self.next - 1)
     }
 
     /// What undo would take back.
@@ -88,6 +113,7 @@ impl History {
     /// One step back; gives whether there was one.
     pub fn undo(&mut self) -> bool {
         let can = self.current > 0;
+        self.stroke = None;
         self.current -= usize::from(can);
         can
     }
@@ -95,6 +121,7 @@ impl History {
     /// One step forward; gives whether there was one.
     pub fn redo(&mut self) -> bool {
         let can = self.current + 1 < self.steps.len();
+        self.stroke = None;
         self.current += usize::from(can);
         can
     }
@@ -107,5 +134,36 @@ impl History {
     /// The current document has just been saved.
     pub fn mark_saved(&mut self) {
         self.saved = Some(self.revision());
+        self.stroke = None;
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::document::{ClipWork, Document};
+    use super::super::pass::{MendPass, PassId};
+    use super::*;
+    use crate::snag::SnagKind;
+
+    #[test]
+    fn a_stroke_is_one_step_until_something_else_happens() {
+        let work = ClipWork::new(0, 0, "walk");
+        let mut history = History::new(Document { sources: vec![], works: vec![work] });
+        let step = MendPass::new(SnagKind::Spike, vec![]).into();
+        history.commit(&Edit::AddPass { work: 0, step, at: 9 }).unwrap();
+        let set = |amount| Edit::SetAmount { work: 0, pass: PassId(0), amount };
+        let amount = |history: &History| history.document().works[0].passes[0].step.kind().amount();
+        for (amount, stroke) in [(0.9, 1), (0.8, 1), (0.7, 1), (0.6, 2), (0.5, 2)] {
+            history.commit_stroke(&set(amount), stroke).unwrap();
+        }
+        assert_eq!(history.steps().0.len(), 4);
+        history.undo();
+        assert_eq!(amount(&history), Some(0.7));
+        history.redo();
+        assert_eq!(amount(&history), Some(0.5));
+        // A stroke that was left by an undo does not go on.
+        history.commit_stroke(&set(0.4), 2).unwrap();
+        assert_eq!(history.steps().0.len(), 5);
+        assert!(history.commit(&set(1.5)).is_err());
     }
 }

@@ -4,10 +4,15 @@ mod document;
 mod edit;
 mod evaluate;
 mod history;
+mod library;
 pub mod pass;
 
 pub use document::{ClipWork, Document, SourceRef};
 pub use edit::{Edit, EditError};
 pub use evaluate::{Evaluation, Evaluator, Stage};
 pub use history::{History, Revision, Step};
-pub use pass::{MendPass, Pass, PassId, PassStep, SnagMark};
+pub use library::{Library, Loaded};
+pub use pass::{
+    ClipRef, MendPass, Need, NoOthers, Others, Outcome, Pass, PassError, PassId, PassKind, PassStep,
+    ResamplePass, Scope, SnagMark,
+};

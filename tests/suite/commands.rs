@@ -507,7 +507,7 @@ fn a_scene_is_opened_with_its_passes() {
     let source = exchange::open(&bench.path("deckhand.bvh"), &OpenOptions::default()).unwrap();
     let found = survey(&source.clips[0], &SurveyOptions::default(), &Unwatched).unwrap();
     let mended = Edit::Mend { work: 0, snags: found.snags }.apply(&document).unwrap();
-    let label = |_: usize, joint: usize| source.clips[0].skeleton.label(joint).to_owned();
+    let label = |_: usize, _: usize, joint: usize| source.clips[0].skeleton.label(joint).to_owned();
     ron::write(&path, &mended, &label).unwrap();
 
     bench.run("snags deckhand.bvh").expect(1);

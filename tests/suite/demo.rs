@@ -237,7 +237,7 @@ fn scene_bytes(clip_name: &str, clip_bytes: &[u8]) -> Vec<u8> {
     let sources = vec![SourceRef { path: clip_path, sha256: source.sha256 }];
     let scene_path = folder.path().join("scene.ron");
     let document = Document { sources, works: vec![work] };
-    ron::write(&scene_path, &document, &|_, _| String::new()).expect("the scene can be written");
+    ron::write(&scene_path, &document, &|_, _, _| String::new()).expect("the scene can be written");
     disk::read(&scene_path).expect("what was written can be read")
 }
 

@@ -16,7 +16,7 @@ use turnwright::clip::Clip;
 use turnwright::exchange::csv::{CsvOptions, TimeUnit};
 use turnwright::exchange::{OpenOptions, Source, csv, disk, encode, open_bytes, ron};
 use turnwright::rotor::Rotor;
-use turnwright::scene::Evaluator;
+use turnwright::scene::{Evaluator, NoOthers};
 
 use crate::gltf_broken::{self, Dice};
 
@@ -310,7 +310,7 @@ fn handle_scene(bytes: &[u8]) -> bool {
     let source =
         open_bytes(Path::new("usual.bvh"), BVH.into(), &OpenOptions::default()).expect("a sound file");
     for work in &scene.document.works {
-        let _ = Evaluator::default().evaluate(&source.clips[0], &work.passes);
+        let _ = Evaluator::default().evaluate(&source.clips[0], &work.passes, &NoOthers);
     }
     true
 }

@@ -1,7 +1,7 @@
 //! Files: opening, saving, exporting, relocating. Reading and writing is done by jobs.
 
 use std::path::{MAIN_SEPARATOR, Path, PathBuf};
-use std::sync::{Arc, PoisonError};
+use std::sync::Arc;
 
 use egui::Context;
 
@@ -15,7 +15,7 @@ use super::answers::Answer;
 use crate::demo;
 use crate::exchange::csv::{CsvErrorKind, CsvOptions, NamedColumns, TimeUnit};
 use crate::exchange::{self, ClipAddress, Guard, OpenError, OpenOptions, Source, disk, ron};
-use crate::scene::{Document, Edit, Evaluator, SourceRef};
+use crate::scene::{Document, Edit, Library, Loaded, SourceRef};
 
 /// A scene as read, with its files as far as they were found.
 #[derive(Debug)]
@@ -184,12 +184,18 @@ impl Window {
         let Some(project) = &self.bench.project else { return };
         let (serial, revision) = (project.serial, project.history.revision());
         let document = Arc::clone(project.document());
+        // For each work the source's skeleton, and the one that each pass gets.
+        let library = project.library();
         let skeletons: Vec<_> = (0..document.works.len())
-            .map(|work| project.source_clip(work).map(|clip| Arc::clone(&clip.skeleton)))
+            .map(|work| {
+                let source = library.source_clip(work).map(|clip| Arc::clone(&clip.skeleton));
+                let own = library.skeletons(work).unwrap_or_default();
+                if own.is_empty() { source.into_iter().collect() } else { own }
+            })
             .collect();
         self.jobs.submit(Slot::Save, move |_| {
-            let label = |work: usize, joint: usize| {
-                let skeleton = skeletons.get(work).and_then(Option::as_ref);
+            let label = |work: usize, pass: usize, joint: usize| {
+                let skeleton = skeletons.get(work).and_then(|own| own.get(pass));
                 let known = skeleton.filter(|skeleton| joint < skeleton.len());
                 known.map_or_else(|| format!("#{joint}"), |skeleton| skeleton.label(joint).to_owned())
             };
@@ -244,21 +250,20 @@ impl Window {
         let Some(project) = &self.bench.project else { return };
         let document = Arc::clone(project.document());
         let choice = self.bench.work().map(|work| work.clip);
-        let evaluators: Vec<_> =
-            project.findings.iter().map(|findings| Arc::clone(&findings.evaluator)).collect();
+        let library = project.library();
         let inputs: Vec<PathBuf> = document.sources.iter().map(|source| source.path.clone()).collect();
         self.jobs.submit(Slot::Export, move |watch| {
             let mut results = source.clips.clone();
             let mut all = Changes::default();
-            let works = document.works.iter().zip(&evaluators).filter(|(work, _)| work.source == index);
-            for (done, (work, evaluator)) in works.enumerate() {
+            let works = document.works.iter().enumerate().filter(|(_, work)| work.source == index);
+            for (done, (number, work)) in works.enumerate() {
                 if !crate::snag::Progress::report(watch, done, results.len() + 1) {
                     return None;
                 }
                 let Some(clip) = source.clips.get(work.clip) else { continue };
-                let mut evaluator: std::sync::MutexGuard<'_, Evaluator> =
-                    evaluator.lock().unwrap_or_else(PoisonError::into_inner);
-                let result = evaluator.evaluate(clip, &work.passes).result;
+                let Some(result) = library.evaluate(number).map(|evaluation| evaluation.result) else {
+                    continue;
+                };
                 all = all.and(&changes(clip, &result));
                 results[work.clip] = result;
             }
@@ -333,15 +338,15 @@ fn open_scene(path: PathBuf) -> Result<OpenedScene, String> {
         });
     }
     let mut lost = Vec::new();
+    let loaded =
+        sources.iter().map(|state| state.source().map(|source| Loaded::of_clips(source.clips.clone())));
+    let library = Library::new(Arc::new(scene.document.clone()), loaded.collect());
     for work in 0..scene.document.works.len() {
         let own = &scene.document.works[work];
         let source = sources.get(own.source).and_then(SourceState::source);
         let Some(source) = source else { continue };
         match source.clips.get(own.clip) {
-            Some(clip) => {
-                let skeleton = Arc::clone(&clip.skeleton);
-                lost.extend(scene.fit(work, &skeleton));
-            }
+            Some(clip) => lost.extend(scene.fit(work, &clip.skeleton, &library)),
             None => lost.push(format!(
                 "all of `{}`, since the file now has {}",
                 own.name,

@@ -1,6 +1,6 @@
 //! Work that is missing is ordered: what panels want to show and nobody has worked out yet.
 
-use std::sync::{Arc, PoisonError};
+use std::sync::Arc;
 
 use super::super::bench::{Evaluated, FromClips};
 use super::super::jobs::Slot;
@@ -11,13 +11,16 @@ use crate::clip::Clip;
 use crate::mend::{SurveyOptions, survey};
 use crate::scene::Pass;
 
+/// Passes by work.
+type Behind = Vec<(usize, Vec<Pass>)>;
+
 /// The last order of each purpose, so that none is given twice.
 #[derive(Debug, Default)]
 pub(crate) struct Asked {
     /// Project and work.
     pub survey: Option<(u64, usize)>,
-    /// Project, work and passes.
-    pub evaluation: Option<(u64, usize, Vec<Pass>)>,
+    /// Project, work, passes, and those of other clips that they need.
+    pub evaluation: Option<(u64, usize, Vec<Pass>, Behind)>,
     /// Clips and colours.
     pub heat: Option<FromClips<HeatKind, ()>>,
     /// Clips, joint and view.
@@ -58,29 +61,30 @@ impl Window {
     }
 
     fn order_evaluation(&mut self, source: &Arc<Clip>) {
-        let Some(findings) = self.bench.findings() else { return };
-        let known = findings.evaluated.as_ref().map(|evaluated| &evaluated.passes);
-        let is_unchanged = self.bench.work().is_some_and(|work| known == Some(&work.passes));
-        if self.bench.preview.is_none() && is_unchanged {
+        let (Some(findings), Some(project)) = (self.bench.findings(), &self.bench.project) else { return };
+        let (serial, work) = (project.serial, self.bench.session.work);
+        let known = findings.evaluated.as_ref();
+        let behind = project.passes_behind(work);
+        let is_unchanged =
+            |passes: &[Pass]| known.is_some_and(|known| known.passes == passes && known.behind == behind);
+        if self.bench.preview.is_none() && self.bench.work().is_some_and(|work| is_unchanged(&work.passes)) {
             return;
         }
         let passes = self.bench.passes();
-        if findings.evaluated.as_ref().is_some_and(|evaluated| evaluated.passes == passes) {
+        if is_unchanged(&passes) {
             return;
         }
-        let order = (self.serial(), self.bench.session.work, passes);
+        let order = (serial, work, passes.clone(), behind.clone());
         if self.asked.evaluation.as_ref() == Some(&order) && self.jobs.is_running(Slot::Evaluate) {
             return;
         }
-        let (serial, work, passes) = order.clone();
         self.asked.evaluation = Some(order);
-        let evaluator = Arc::clone(&findings.evaluator);
+        let library = project.library();
         let source = Arc::clone(source);
         self.jobs.submit(Slot::Evaluate, move |_| {
-            let mut evaluator = evaluator.lock().unwrap_or_else(PoisonError::into_inner);
-            let evaluation = evaluator.evaluate(&source, &passes);
+            let evaluation = library.evaluate_with(work, &passes)?;
             let changes = changes(&source, &evaluation.result);
-            let evaluated = Evaluated { passes, evaluation: Arc::new(evaluation), changes };
+            let evaluated = Evaluated { passes, behind, evaluation: Arc::new(evaluation), changes };
             Some(Answer::Evaluated { serial, work, evaluated: Box::new(evaluated) })
         });
     }

@@ -127,7 +127,8 @@ fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut S
 /// How much of a pass is taken. While it is dragged the window shows the result; letting go is one step of the history.
 fn amount_ui(ui: &mut Ui, amount: f64, row: &PassRow, scope: &mut Scope<'_>) {
     let work = scope.bench.session.work;
-    let shown = scope.bench.preview.filter(|(id, _)| *id == row.id).map_or(amount, |(_, amount)| amount);
+    let shown = scope.bench.preview.as_ref().filter(|(id, _)| *id == row.id);
+    let shown = shown.and_then(|(_, step)| step.kind().amount()).unwrap_or(amount);
     let mut percent = shown * 100.0;
     ui.horizontal(|ui| {
         ui.add_space(24.0);
@@ -140,7 +141,11 @@ fn amount_ui(ui: &mut Ui, amount: f64, row: &PassRow, scope: &mut Scope<'_>) {
         if response.drag_stopped() || (response.changed() && !response.dragged()) {
             scope.out.push(Command::Edit(Edit::SetAmount { work, pass: row.id, amount: wanted }));
         } else if response.changed() {
-            scope.out.push(Command::PreviewAmount(row.id, wanted));
+            let own = scope.bench.work().and_then(|work| work.pass(row.id));
+            if let Some(mut step) = own.map(|pass| pass.step.clone()) {
+                step.kind_mut().set_amount(wanted);
+                scope.out.push(Command::PreviewPass(row.id, Box::new(step)));
+            }
         }
     });
 }

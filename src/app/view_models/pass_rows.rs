@@ -1,7 +1,6 @@
 //! The rows of the passes list.
 
-use crate::scene::{ClipWork, Evaluation, PassId, PassStep};
-use crate::snag::SnagKind;
+use crate::scene::{ClipWork, Evaluation, PassId};
 
 use super::words::{counted, degrees};
 
@@ -29,11 +28,13 @@ pub fn pass_rows(work: &ClipWork, evaluation: Option<&Evaluation>) -> Vec<PassRo
     work.passes
         .iter()
         .map(|pass| {
-            let PassStep::Mend(mend) = &pass.step;
             let stage = evaluation.and_then(|all| all.stages.iter().find(|stage| stage.pass == pass.id));
             let change = match stage {
                 _ if !pass.on => "off".to_owned(),
                 None => "…".to_owned(),
+                Some(stage) if stage.has_other_skeleton => {
+                    format!("another skeleton, {}", counted(stage.joints_changed, "joint"))
+                }
                 Some(stage) if stage.joints_changed == 0 => "nothing to change".to_owned(),
                 Some(stage) => {
                     let joints = counted(stage.joints_changed, "joint");
@@ -43,19 +44,17 @@ pub fn pass_rows(work: &ClipWork, evaluation: Option<&Evaluation>) -> Vec<PassRo
                     }
                 }
             };
+            let notes = stage.map_or(&[][..], |stage| &stage.notes);
+            let change = [vec![change], notes.to_vec()].concat().join("; ");
             PassRow {
                 id: pass.id,
                 title: pass.step.title(),
-                explanation: mend.kind.mend_explanation(),
+                explanation: pass.step.kind().explanation(),
                 on: pass.on,
                 change,
-                amount: moves_poses(mend.kind).then_some(mend.amount),
+                amount: pass.step.kind().amount(),
                 problem: stage.and_then(|stage| stage.problem.clone()),
             }
         })
         .collect()
-}
-
-fn moves_poses(kind: SnagKind) -> bool {
-    matches!(kind, SnagKind::HalfTurn | SnagKind::Spike)
 }

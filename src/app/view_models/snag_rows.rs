@@ -3,7 +3,7 @@
 use std::collections::BTreeSet;
 
 use crate::clip::Clip;
-use crate::scene::{ClipWork, PassStep, SnagMark};
+use crate::scene::{ClipWork, SnagMark};
 use crate::snag::{Snag, SnagKind};
 
 use super::words::{degrees, frames_text};
@@ -32,14 +32,7 @@ impl SnagState {
 
 /// What has been decided about each snag, in their order.
 pub fn snag_states(snags: &[Snag], work: &ClipWork) -> Vec<SnagState> {
-    let mended: BTreeSet<SnagMark> = work
-        .passes
-        .iter()
-        .flat_map(|pass| {
-            let PassStep::Mend(mend) = &pass.step;
-            mend.snags.iter().map(SnagMark::of)
-        })
-        .collect();
+    let mended: BTreeSet<SnagMark> = work.mended().map(SnagMark::of).collect();
     let left: BTreeSet<SnagMark> = work.left.iter().copied().collect();
     let state = |snag: &Snag| match SnagMark::of(snag) {
         mark if mended.contains(&mark) => SnagState::Mended,

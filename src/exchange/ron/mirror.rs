@@ -2,8 +2,9 @@
 
 use serde::{Deserialize, Serialize};
 
-/// The version this program writes.
-pub(super) const VERSION: u32 = 1;
+/// The newest version this program knows. 1 holds mends alone; 2 all other passes too. A scene is written in the oldest
+/// version that holds it, so that an older program opens what it can.
+pub(super) const VERSION: u32 = 2;
 
 /// The first thing that is read: does this version know the rest?
 #[derive(Deserialize)]
@@ -45,12 +46,23 @@ pub(super) struct ClipWork {
 pub(super) struct Pass {
     pub(super) id: u64,
     pub(super) on: bool,
+    /// Numbers and labels of the joints that the step names by number, since numbers change when a file is written anew.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub(super) joints: Vec<(usize, String)>,
     pub(super) step: Step,
 }
 
 #[derive(Serialize, Deserialize)]
 pub(super) enum Step {
     Mend { kind: String, amount: f64, snags: Vec<Snag> },
+    Resample { rate: f64 },
+}
+
+impl Step {
+    /// The oldest version that knows it.
+    pub(super) fn version(&self) -> u32 {
+        if matches!(self, Self::Mend { .. }) { 1 } else { 2 }
+    }
 }
 
 /// A snag with all that its mend needs, so that a scene plays the same wherever it is opened.

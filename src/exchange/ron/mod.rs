@@ -3,6 +3,7 @@
 mod error;
 mod mirror;
 mod scene_file;
+mod steps;
 
 pub use error::SceneError;
-pub use scene_file::{SceneFile, from_text, read, to_text, write};
+pub use scene_file::{SceneFile, WorkLabels, from_text, read, to_text, write};

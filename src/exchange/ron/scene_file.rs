@@ -1,47 +1,75 @@
 //! Reading and writing scene files, and fitting a scene to the skeletons its sources have now.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 use std::path::{Component, Path, PathBuf};
+use std::sync::Arc;
 
-use crate::rotor::Rotor;
-use crate::scene::{ClipWork, Document, MendPass, Pass, PassId, PassStep, SnagMark, SourceRef};
+use crate::scene::{ClipWork, Document, Others, Pass, PassId, SnagMark, SourceRef};
 use crate::skeleton::Skeleton;
-use crate::snag::{Remedy, Snag, SnagKind};
 
 use super::super::disk;
 use super::error::SceneError;
 use super::mirror;
+use super::steps::{kind_from, step_from, step_to};
 
 /// A scene as read: the document, and by what names it knew the joints.
 #[derive(Clone, Debug, PartialEq)]
 pub struct SceneFile {
     /// The document. Source paths are joined to the scene's folder. Joint numbers are those of the day it was saved.
     pub document: Document,
-    /// For each clip's work, the label of each joint number that it uses.
-    pub labels: Vec<BTreeMap<usize, String>>,
+    /// By what labels each clip's work knew its joints.
+    pub labels: Vec<WorkLabels>,
+}
+
+/// The labels of the joints that the work on a clip names by number.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct WorkLabels {
+    /// Of the snags that are left as they are.
+    pub left: BTreeMap<usize, String>,
+    /// Of each pass. Behind a pass that carries the clip to another skeleton the same number is another joint.
+    pub passes: Vec<BTreeMap<usize, String>>,
 }
 
 impl SceneFile {
-    /// Renumbers the joints of a clip's work to those that bear their labels in `skeleton` now.
-    /// What names a joint that is no longer there is taken out; gives the labels that were lost.
-    pub fn fit(&mut self, work: usize, skeleton: &Skeleton) -> Vec<String> {
+    /// Renumbers the joints of a clip's work to those that bear their labels now. `skeleton` is the source's; passes that
+    /// lead to another one ask `others`. What names a joint that is no longer there is taken out; gives the labels that
+    /// were lost.
+    pub fn fit(&mut self, work: usize, skeleton: &Arc<Skeleton>, others: &dyn Others) -> Vec<String> {
         let (Some(labels), Some(clip)) = (self.labels.get(work), self.document.works.get_mut(work)) else {
             return Vec::new();
         };
-        let now: BTreeMap<usize, Option<usize>> =
-            labels.iter().map(|(&number, label)| (number, skeleton.find(label))).collect();
-        let fitted = |number: usize| now.get(&number).copied().flatten();
-        for pass in &mut clip.passes {
-            match &mut pass.step {
-                PassStep::Mend(mend) => {
-                    mend.snags
-                        .retain_mut(|snag| fitted(snag.joint).map(|joint| snag.joint = joint).is_some());
-                }
+        let mut lost = BTreeSet::new();
+        let left = Fitted::new(&labels.left, skeleton, &mut lost);
+        clip.left.retain_mut(|mark| left.now(mark.joint).map(|joint| mark.joint = joint).is_some());
+        let unknown = BTreeMap::new();
+        let mut current = Arc::clone(skeleton);
+        for (place, pass) in clip.passes.iter_mut().enumerate() {
+            let own = Fitted::new(labels.passes.get(place).unwrap_or(&unknown), &current, &mut lost);
+            pass.step.kind_mut().renumber(&|joint| own.now(joint));
+            if pass.on
+                && let Some(next) = pass.step.kind().skeleton_after(others)
+            {
+                current = next;
             }
         }
-        clip.left.retain_mut(|mark| fitted(mark.joint).map(|joint| mark.joint = joint).is_some());
-        let lost = labels.iter().filter(|&(&number, _)| fitted(number).is_none());
-        lost.map(|(_, label)| label.clone()).collect()
+        lost.into_iter().collect()
+    }
+}
+
+/// Joint numbers of the day a scene was saved, and what they are now.
+struct Fitted(BTreeMap<usize, Option<usize>>);
+
+impl Fitted {
+    fn new(labels: &BTreeMap<usize, String>, skeleton: &Skeleton, lost: &mut BTreeSet<String>) -> Self {
+        let now: BTreeMap<usize, Option<usize>> =
+            labels.iter().map(|(&number, label)| (number, skeleton.find(label))).collect();
+        let gone = now.iter().filter(|(_, joint)| joint.is_none()).map(|(number, _)| labels[number].clone());
+        lost.extend(gone);
+        Self(now)
+    }
+
+    fn now(&self, number: usize) -> Option<usize> {
+        self.0.get(&number).copied().flatten()
     }
 }
 
@@ -56,14 +84,15 @@ pub fn read(path: &Path) -> Result<SceneFile, SceneError> {
     from_text(path, text)
 }
 
-/// Writes a scene file at one stroke. `label` names joint `.1` of clip work `.0`.
+/// Writes a scene file at one stroke. `label` names joint `.2` of clip work `.0` as the pass at place `.1` numbers it; place
+/// 0 is also asked for the snags that are left, which are the source's.
 ///
 /// # Errors
 /// When the system refuses; the old file then stays.
 pub fn write(
     path: &Path,
     document: &Document,
-    label: &dyn Fn(usize, usize) -> String,
+    label: &dyn Fn(usize, usize, usize) -> String,
 ) -> Result<(), SceneError> {
     let text = to_text(path, document, label)?;
     Ok(disk::write(path, text.as_bytes())?)
@@ -111,24 +140,20 @@ pub fn from_text(path: &Path, text: &str) -> Result<SceneFile, SceneError> {
     Ok(file)
 }
 
-fn work_from(clip: mirror::ClipWork) -> Result<(ClipWork, BTreeMap<usize, String>), String> {
-    let mut labels = BTreeMap::new();
+fn work_from(clip: mirror::ClipWork) -> Result<(ClipWork, WorkLabels), String> {
+    let mut labels = WorkLabels::default();
     let mut work = ClipWork::new(clip.source, clip.clip, clip.name);
     for pass in clip.passes {
-        let mirror::Step::Mend { kind, amount, snags } = pass.step;
-        let kind = kind_from(&kind)?;
-        if !(0.0..=1.0).contains(&amount) {
-            return Err(format!("expected an amount from 0 to 1, found {amount}"));
+        let mut own: BTreeMap<usize, String> = pass.joints.into_iter().collect();
+        if let mirror::Step::Mend { snags, .. } = &pass.step {
+            own.extend(snags.iter().map(|snag| (snag.joint_index, snag.joint.clone())));
         }
-        for snag in &snags {
-            labels.insert(snag.joint_index, snag.joint.clone());
-        }
-        let snags = snags.into_iter().map(|snag| snag_from(kind, snag)).collect();
+        labels.passes.push(own);
         let id = PassId(pass.id);
-        if work.passes.iter().any(|own| own.id == id) {
+        if work.pass(id).is_some() {
             return Err(format!("expected every pass to have its own id, found {} twice", pass.id));
         }
-        work.passes.push(Pass { id, on: pass.on, step: PassStep::Mend(MendPass { kind, snags, amount }) });
+        work.passes.push(Pass { id, on: pass.on, step: step_from(pass.step)? });
     }
     for left in clip.left {
         let (first_key, last_key) = left.keys;
@@ -138,66 +163,9 @@ fn work_from(clip: mirror::ClipWork) -> Result<(ClipWork, BTreeMap<usize, String
             first_key,
             last_key,
         });
-        labels.insert(left.joint_index, left.joint);
+        labels.left.insert(left.joint_index, left.joint);
     }
     Ok((work, labels))
-}
-
-fn kind_from(text: &str) -> Result<SnagKind, String> {
-    text.parse().map_err(|error: crate::snag::NoSuchKind| error.to_string())
-}
-
-fn snag_from(kind: SnagKind, snag: mirror::Snag) -> Snag {
-    Snag {
-        kind,
-        joint: snag.joint_index,
-        first_key: snag.keys.0,
-        last_key: snag.keys.1,
-        first_frame: snag.frames.0,
-        last_frame: snag.frames.1,
-        first_secs: snag.seconds.0,
-        last_secs: snag.seconds.1,
-        size_rad: snag.size_deg.to_radians(),
-        confidence: snag.confidence,
-        remedy: match snag.remedy {
-            mirror::Remedy::Normalise => Remedy::Normalise,
-            mirror::Remedy::Negate => Remedy::Negate,
-            mirror::Remedy::Unwrap(a, b, c) => Remedy::Unwrap([a, b, c]),
-            mirror::Remedy::NearestAngles => Remedy::NearestAngles,
-            mirror::Remedy::Redraw => Remedy::Redraw,
-            mirror::Remedy::ShortWay => Remedy::ShortWay,
-            mirror::Remedy::TakeOut(s, yz, zx, xy) => Remedy::TakeOut(Rotor::new(s, yz, zx, xy)),
-            mirror::Remedy::TakeOutAbove(s, yz, zx, xy) => Remedy::TakeOutAbove(Rotor::new(s, yz, zx, xy)),
-            mirror::Remedy::Ask => Remedy::Ask,
-        },
-        safe: snag.safe,
-        text: snag.text,
-    }
-}
-
-fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
-    mirror::Snag {
-        joint,
-        joint_index: snag.joint,
-        keys: (snag.first_key, snag.last_key),
-        frames: (snag.first_frame, snag.last_frame),
-        seconds: (snag.first_secs, snag.last_secs),
-        size_deg: snag.size_rad.to_degrees(),
-        confidence: snag.confidence,
-        remedy: match snag.remedy {
-            Remedy::Normalise => mirror::Remedy::Normalise,
-            Remedy::Negate => mirror::Remedy::Negate,
-            Remedy::Unwrap([a, b, c]) => mirror::Remedy::Unwrap(a, b, c),
-            Remedy::NearestAngles => mirror::Remedy::NearestAngles,
-            Remedy::Redraw => mirror::Remedy::Redraw,
-            Remedy::ShortWay => mirror::Remedy::ShortWay,
-            Remedy::TakeOut(r) => mirror::Remedy::TakeOut(r.s, r.yz, r.zx, r.xy),
-            Remedy::TakeOutAbove(r) => mirror::Remedy::TakeOutAbove(r.s, r.yz, r.zx, r.xy),
-            Remedy::Ask => mirror::Remedy::Ask,
-        },
-        safe: snag.safe,
-        text: snag.text.clone(),
-    }
 }
 
 /// The text that [`write()`] writes; `path` is where it will stand.
@@ -207,7 +175,7 @@ fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
 pub fn to_text(
     path: &Path,
     document: &Document,
-    label: &dyn Fn(usize, usize) -> String,
+    label: &dyn Fn(usize, usize, usize) -> String,
 ) -> Result<String, SceneError> {
     let folder = path.parent().unwrap_or(Path::new(""));
     let sources = document
@@ -221,20 +189,19 @@ pub fn to_text(
         passes: work
             .passes
             .iter()
-            .map(|pass| {
-                let PassStep::Mend(mend) = &pass.step;
+            .enumerate()
+            .map(|(place, pass)| {
+                let named = |joint: usize| label(index, place, joint);
+                // Mends say the label beside each number.
+                let joints = match pass.step.as_mend() {
+                    Some(_) => BTreeSet::new(),
+                    None => pass.step.kind().joints().into_iter().collect(),
+                };
                 mirror::Pass {
                     id: pass.id.0,
                     on: pass.on,
-                    step: mirror::Step::Mend {
-                        kind: mend.kind.to_string(),
-                        amount: mend.amount,
-                        snags: mend
-                            .snags
-                            .iter()
-                            .map(|snag| snag_to(snag, label(index, snag.joint)))
-                            .collect(),
-                    },
+                    joints: joints.into_iter().map(|joint| (joint, named(joint))).collect(),
+                    step: step_to(&pass.step, &named),
                 }
             })
             .collect(),
@@ -243,17 +210,16 @@ pub fn to_text(
             .iter()
             .map(|mark| mirror::Left {
                 kind: mark.kind.to_string(),
-                joint: label(index, mark.joint),
+                joint: label(index, 0, mark.joint),
                 joint_index: mark.joint,
                 keys: (mark.first_key, mark.last_key),
             })
             .collect(),
     });
-    let scene = mirror::Saved {
-        turnwright_scene: mirror::VERSION,
-        sources: sources.collect(),
-        clips: clips.collect(),
-    };
+    let clips: Vec<mirror::ClipWork> = clips.collect();
+    let versions = clips.iter().flat_map(|clip| &clip.passes).map(|pass| pass.step.version());
+    let turnwright_scene = versions.max().unwrap_or(1);
+    let scene = mirror::Saved { turnwright_scene, sources: sources.collect(), clips };
     let pretty = ron::ser::PrettyConfig::new().depth_limit(7).struct_names(false).new_line("\n");
     let text = ron::ser::to_string_pretty(&scene, pretty)
         .map_err(|error| SceneError::Encode { path: path.to_owned(), what: error.to_string() })?;
@@ -293,6 +259,9 @@ fn tidy(path: &Path) -> PathBuf {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::rotor::Rotor;
+    use crate::scene::{MendPass, NoOthers, ResamplePass};
+    use crate::snag::{Remedy, Snag, SnagKind};
 
     fn snag(kind: SnagKind, joint: usize, remedy: Remedy) -> Snag {
         Snag {
@@ -318,18 +287,19 @@ mod tests {
         work.passes.push(Pass {
             id: PassId(4),
             on: false,
-            step: PassStep::Mend(MendPass {
+            step: MendPass {
                 kind: SnagKind::HalfTurn,
                 snags: vec![snag(SnagKind::HalfTurn, 2, Remedy::TakeOut(offset))],
                 amount: 0.5,
-            }),
+            }
+            .into(),
         });
         work.left.push(SnagMark::of(&snag(SnagKind::Spike, 1, Remedy::Redraw)));
         let source = SourceRef { path: folder.join("takes/walk.bvh"), sha256: "00".repeat(32) };
         Document { sources: vec![source], works: vec![work] }
     }
 
-    fn label(_work: usize, joint: usize) -> String {
+    fn label(_work: usize, _pass: usize, joint: usize) -> String {
         ["Root", "Spine", "Hip"][joint].to_owned()
     }
 
@@ -343,12 +313,31 @@ mod tests {
         assert_eq!(tidy(&back.document.sources[0].path), document.sources[0].path);
         back.document.sources[0].path.clone_from(&document.sources[0].path);
         // An angle in degrees and back may move by its last bit.
-        let PassStep::Mend(mend) = &mut back.document.works[0].passes[0].step;
+        let mend = back.document.works[0].passes[0].step.as_mend_mut().unwrap();
         assert!((mend.snags[0].size_rad - 3.0).abs() < 1e-15);
         mend.snags[0].size_rad = 3.0;
         assert_eq!(back.document, document);
         let text = std::str::from_utf8(&disk::read(&path).unwrap()).unwrap().to_owned();
         assert!(text.contains("path: \"../takes/walk.bvh\""), "{text}");
+    }
+
+    #[test]
+    fn the_oldest_version_that_holds_a_scene_is_written() {
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("night.ron");
+        let mut document = document(folder.path());
+        let version = |document: &Document| {
+            let text = to_text(&path, document, &label).unwrap();
+            let back = from_text(&path, &text).unwrap().document.works.swap_remove(0);
+            assert_eq!(back.passes.len(), document.works[0].passes.len());
+            (text.lines().find(|line| line.contains("turnwright_scene")).unwrap().trim().to_owned(), back)
+        };
+        assert_eq!(version(&document).0, "turnwright_scene: 1,");
+        let step = ResamplePass { rate: 30.0 }.into();
+        document.works[0].passes.push(Pass { id: PassId(5), on: true, step });
+        let (line, back) = version(&document);
+        assert_eq!(line, "turnwright_scene: 2,");
+        assert_eq!(back.passes[1], document.works[0].passes[1]);
     }
 
     #[test]
@@ -366,8 +355,8 @@ mod tests {
             tips: vec![],
         };
         let skeleton = Skeleton::new(vec![joint("Hip", 0), joint("Root", 1)]).unwrap();
-        assert_eq!(back.fit(0, &skeleton), ["Spine"]);
-        let PassStep::Mend(mend) = &back.document.works[0].passes[0].step;
+        assert_eq!(back.fit(0, &Arc::new(skeleton), &NoOthers), ["Spine"]);
+        let mend = back.document.works[0].passes[0].step.as_mend().unwrap();
         assert_eq!(mend.snags[0].joint, 0);
         assert!(back.document.works[0].left.is_empty());
     }
@@ -379,7 +368,7 @@ mod tests {
             assert!(error.contains(expected), "{text}: {error}");
         };
         check("", "x.ron: line 1, column 1: expected a Turnwright scene");
-        check("(turnwright_scene: 99)", "expected scene version 1 or older, found 99");
+        check("(turnwright_scene: 99)", "expected scene version 2 or older, found 99");
         check(
             "(turnwright_scene: 1, sources: [], clips: [(source: 0, clip: 0, name: \"a\")])",
             "expected a source below 0, found 0",

@@ -1,9 +1,15 @@
 //! The pass that mends snags of one kind.
 
+use std::sync::Arc;
+
 use crate::clip::{Clip, RotationTrack};
-use crate::mend::{self, MendError};
+use crate::mend;
 use crate::rotor::slerp;
 use crate::snag::{Snag, SnagKind};
+
+use super::error::PassError;
+use super::kind::{Outcome, PassKind};
+use super::others::Others;
 
 /// Mends a list of snags of one kind.
 #[derive(Clone, Debug, PartialEq)]
@@ -41,18 +47,19 @@ impl MendPass {
     pub fn new(kind: SnagKind, snags: Vec<Snag>) -> Self {
         Self { kind, snags, amount: 1.0 }
     }
+}
 
-    /// A short title for lists, with the number of snags.
-    pub fn title(&self) -> String {
+impl PassKind for MendPass {
+    fn title(&self) -> String {
         let count = self.snags.len();
         format!("Mend {} ({count} snag{})", self.kind, if count == 1 { "" } else { "s" })
     }
 
-    /// The clip with all its snags mended.
-    ///
-    /// # Errors
-    /// When a snag does not fit the clip.
-    pub fn apply(&self, clip: &Clip) -> Result<Clip, MendError> {
+    fn explanation(&self) -> &'static str {
+        self.kind.mend_explanation()
+    }
+
+    fn apply(&self, clip: &Arc<Clip>, _others: &dyn Others) -> Result<Outcome, PassError> {
         let mut mended = mend::apply_all(clip, &self.snags)?;
         if self.amount < 1.0 && moves_poses(self.kind) {
             for joint in 0..mended.joints.len() {
@@ -64,7 +71,24 @@ impl MendPass {
                 }
             }
         }
-        Ok(mended)
+        Ok(mended.into())
+    }
+
+    fn joints(&self) -> Vec<usize> {
+        self.snags.iter().map(|snag| snag.joint).collect()
+    }
+
+    fn renumber(&mut self, now: &dyn Fn(usize) -> Option<usize>) {
+        self.snags.retain_mut(|snag| now(snag.joint).map(|joint| snag.joint = joint).is_some());
+    }
+
+    /// Kinds that keep every pose are taken whole.
+    fn amount(&self) -> Option<f64> {
+        moves_poses(self.kind).then_some(self.amount)
+    }
+
+    fn set_amount(&mut self, amount: f64) {
+        self.amount = amount;
     }
 }
 

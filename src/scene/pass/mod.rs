@@ -1,11 +1,18 @@
 //! Passes: the ordered, switchable steps from a source clip to the result. One file a kind.
 
+mod error;
+mod kind;
 mod mend;
+mod others;
+mod resample;
+mod scope;
 
+pub use error::PassError;
+pub use kind::{Outcome, PassKind};
 pub use mend::{MendPass, SnagMark};
-
-use crate::clip::Clip;
-use crate::mend::MendError;
+pub use others::{ClipRef, Need, NoOthers, Others};
+pub use resample::ResamplePass;
+pub use scope::Scope;
 
 /// Names a pass for as long as the document lives; never used twice in one clip's list.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -22,28 +29,59 @@ pub struct Pass {
     pub step: PassStep,
 }
 
-/// What a pass does.
-#[derive(Clone, Debug, PartialEq)]
-pub enum PassStep {
+/// Makes the list of kinds: the enum and the two places that look into it.
+macro_rules! steps {
+    ($($(#[$doc:meta])* $name:ident($pass:ty),)+) => {
+        /// What a pass does.
+        #[derive(Clone, Debug, PartialEq)]
+        pub enum PassStep {
+            $($(#[$doc])* $name($pass),)+
+        }
+
+        impl PassStep {
+            /// What every kind can tell and do.
+            pub fn kind(&self) -> &dyn PassKind {
+                match self {
+                    $(Self::$name(pass) => pass,)+
+                }
+            }
+
+            /// The same, to change its parameters.
+            pub fn kind_mut(&mut self) -> &mut dyn PassKind {
+                match self {
+                    $(Self::$name(pass) => pass,)+
+                }
+            }
+        }
+
+        $(impl From<$pass> for PassStep {
+            fn from(pass: $pass) -> Self {
+                Self::$name(pass)
+            }
+        })+
+    };
+}
+
+steps! {
     /// Mends snags of one kind.
     Mend(MendPass),
+    /// Another rate.
+    Resample(ResamplePass),
 }
 
 impl PassStep {
     /// A short title for lists.
     pub fn title(&self) -> String {
-        match self {
-            Self::Mend(pass) => pass.title(),
-        }
+        self.kind().title()
     }
 
-    /// The clip after this step. Joints it does not touch stay shared with `clip`.
-    ///
-    /// # Errors
-    /// When the step does not fit the clip (a scene whose source has changed).
-    pub fn apply(&self, clip: &Clip) -> Result<Clip, MendError> {
-        match self {
-            Self::Mend(pass) => pass.apply(clip),
-        }
+    /// The mends, where it is a pass of such.
+    pub fn as_mend(&self) -> Option<&MendPass> {
+        if let Self::Mend(pass) = self { Some(pass) } else { None }
+    }
+
+    /// The mends to change, where it is a pass of such.
+    pub fn as_mend_mut(&mut self) -> Option<&mut MendPass> {
+        if let Self::Mend(pass) = self { Some(pass) } else { None }
     }
 }

@@ -1,0 +1,97 @@
+//! Passes between the document and the file: one pair of arms for each kind.
+
+use crate::rotor::Rotor;
+use crate::scene::{MendPass, PassStep, ResamplePass};
+use crate::snag::{Remedy, Snag, SnagKind};
+
+use super::mirror;
+
+/// A step as the document holds it.
+pub(super) fn step_from(step: mirror::Step) -> Result<PassStep, String> {
+    Ok(match step {
+        mirror::Step::Mend { kind, amount, snags } => {
+            let kind = kind_from(&kind)?;
+            amount_in_range(amount)?;
+            let snags = snags.into_iter().map(|snag| snag_from(kind, snag)).collect();
+            MendPass { kind, snags, amount }.into()
+        }
+        mirror::Step::Resample { rate } => ResamplePass { rate }.into(),
+    })
+}
+
+/// A step as the file holds it. `label` names a joint.
+pub(super) fn step_to(step: &PassStep, label: &dyn Fn(usize) -> String) -> mirror::Step {
+    match step {
+        PassStep::Mend(mend) => mirror::Step::Mend {
+            kind: mend.kind.to_string(),
+            amount: mend.amount,
+            snags: mend.snags.iter().map(|snag| snag_to(snag, label(snag.joint))).collect(),
+        },
+        PassStep::Resample(pass) => mirror::Step::Resample { rate: pass.rate },
+    }
+}
+
+fn amount_in_range(amount: f64) -> Result<(), String> {
+    if (0.0..=1.0).contains(&amount) {
+        Ok(())
+    } else {
+        Err(format!("expected an amount from 0 to 1, found {amount}"))
+    }
+}
+
+pub(super) fn kind_from(text: &str) -> Result<SnagKind, String> {
+    text.parse().map_err(|error: crate::snag::NoSuchKind| error.to_string())
+}
+
+fn snag_from(kind: SnagKind, snag: mirror::Snag) -> Snag {
+    Snag {
+        kind,
+        joint: snag.joint_index,
+        first_key: snag.keys.0,
+        last_key: snag.keys.1,
+        first_frame: snag.frames.0,
+        last_frame: snag.frames.1,
+        first_secs: snag.seconds.0,
+        last_secs: snag.seconds.1,
+        size_rad: snag.size_deg.to_radians(),
+        confidence: snag.confidence,
+        remedy: match snag.remedy {
+            mirror::Remedy::Normalise => Remedy::Normalise,
+            mirror::Remedy::Negate => Remedy::Negate,
+            mirror::Remedy::Unwrap(a, b, c) => Remedy::Unwrap([a, b, c]),
+            mirror::Remedy::NearestAngles => Remedy::NearestAngles,
+            mirror::Remedy::Redraw => Remedy::Redraw,
+            mirror::Remedy::ShortWay => Remedy::ShortWay,
+            mirror::Remedy::TakeOut(s, yz, zx, xy) => Remedy::TakeOut(Rotor::new(s, yz, zx, xy)),
+            mirror::Remedy::TakeOutAbove(s, yz, zx, xy) => Remedy::TakeOutAbove(Rotor::new(s, yz, zx, xy)),
+            mirror::Remedy::Ask => Remedy::Ask,
+        },
+        safe: snag.safe,
+        text: snag.text,
+    }
+}
+
+fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
+    mirror::Snag {
+        joint,
+        joint_index: snag.joint,
+        keys: (snag.first_key, snag.last_key),
+        frames: (snag.first_frame, snag.last_frame),
+        seconds: (snag.first_secs, snag.last_secs),
+        size_deg: snag.size_rad.to_degrees(),
+        confidence: snag.confidence,
+        remedy: match snag.remedy {
+            Remedy::Normalise => mirror::Remedy::Normalise,
+            Remedy::Negate => mirror::Remedy::Negate,
+            Remedy::Unwrap([a, b, c]) => mirror::Remedy::Unwrap(a, b, c),
+            Remedy::NearestAngles => mirror::Remedy::NearestAngles,
+            Remedy::Redraw => mirror::Remedy::Redraw,
+            Remedy::ShortWay => mirror::Remedy::ShortWay,
+            Remedy::TakeOut(r) => mirror::Remedy::TakeOut(r.s, r.yz, r.zx, r.xy),
+            Remedy::TakeOutAbove(r) => mirror::Remedy::TakeOutAbove(r.s, r.yz, r.zx, r.xy),
+            Remedy::Ask => mirror::Remedy::Ask,
+        },
+        safe: snag.safe,
+        text: snag.text.clone(),
+    }
+}
