@@ -4,7 +4,9 @@
 //! what they did not touch.
 
 mod bulk;
+mod contact;
 mod continuity;
+mod feet;
 mod keys;
 mod resample;
 mod rotation_track;
@@ -14,7 +16,12 @@ mod vector_track;
 mod worlds;
 
 pub use bulk::turns_between;
+pub use contact::{
+    ContactOptions, Contacts, Foot, FootPart, JointPoint, PlantedSpan, Slide, Trails, contacts, leg_lengths,
+    median_place, slide_of, slides,
+};
 pub use continuity::continuous_angles;
+pub use feet::standing_feet;
 pub use keys::Keys;
 pub use resample::{cut, resampled};
 pub use rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};

@@ -4,10 +4,12 @@ mod apply;
 mod draft;
 mod error;
 mod numbers;
+mod plant;
 mod redraw;
 mod survey;
 mod take_out;
 
 pub use apply::{apply, apply_all, change_rad};
 pub use error::MendError;
+pub use plant::{Miss, PlantOptions, PlantReport, plant_feet};
 pub use survey::{Survey, SurveyOptions, survey};

@@ -1,11 +1,13 @@
-//! Skeletons: joints, rest pose, and forward kinematics.
+//! Skeletons: joints, rest pose, forward kinematics, and limbs bent to a point.
 //!
 //! Knows nothing of time, files or screens.
 
 mod joints;
 mod pose;
 mod transform;
+mod two_joint_limb;
 
 pub use joints::{Joint, JointKind, Skeleton, SkeletonError};
 pub use pose::{LocalPose, WorldJoint};
 pub use transform::Transform;
+pub use two_joint_limb::{EASE_FROM, EndTurn, LimbBend, Reach, TwoJointLimb};

@@ -4,6 +4,7 @@
 //! |---|---|
 //! | `batch` | the bulk kernels: against 50-digit values, against the functions for one rotor, same bits at every level |
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
+//! | `contacts` | feet: which limbs stand, when, and what holding them comes to |
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
 //! | `commands` | the real program: what it prints, how it ends, what it writes |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
@@ -33,6 +34,7 @@
 mod batch;
 mod bvh;
 mod commands;
+mod contacts;
 mod csv;
 mod demo;
 mod exchange;
