@@ -8,6 +8,7 @@
 
 #[cfg(feature = "gui")]
 pub mod app;
+pub mod blend;
 pub mod cli;
 pub mod clip;
 pub mod demo;

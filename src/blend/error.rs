@@ -1,0 +1,54 @@
+//! Why two clips can't be blended.
+
+/// Clips or settings that do not go together.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+pub enum BlendError {
+    /// The skeletons are not the same.
+    #[error(
+        "expected two clips of one skeleton, found {missing} of {count} joints without a partner, the first `{joint}`; \
+         carry one clip over with retarget first"
+    )]
+    OtherSkeleton {
+        /// Joints of the first clip that the second lacks.
+        missing: usize,
+        /// Joints of the first clip.
+        count: usize,
+        /// The first of them.
+        joint: String,
+    },
+    /// A clip has no frames.
+    #[error("expected a clip with frames, found none in `{0}`")]
+    NoFrames(String),
+    /// The overlap does not fit in both clips.
+    #[error("expected an overlap above 0 and at most {most_secs:.3} s, the shorter clip, found {found_secs} s")]
+    Overlap {
+        /// The longest overlap there can be.
+        most_secs: f64,
+        /// What was asked for.
+        found_secs: f64,
+    },
+    /// A weight out of its range.
+    #[error("expected a weight {expected}, found {found}")]
+    Weight {
+        /// The range in words.
+        expected: &'static str,
+        /// What was asked for.
+        found: f64,
+    },
+    /// A joint that is not there.
+    #[error("expected a joint of the clip, found `{0}`")]
+    NoSuchJoint(String),
+    /// No way through the grid keeps the bounds on pace.
+    #[error(
+        "expected clips whose paces differ at most {most}-fold, found {rows} and {columns} frames to align; \
+         cut or resample one of them first"
+    )]
+    TooUnlike {
+        /// The largest ratio of paces.
+        most: usize,
+        /// Frames of the first.
+        rows: usize,
+        /// Frames of the second.
+        columns: usize,
+    },
+}

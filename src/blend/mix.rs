@@ -1,0 +1,335 @@
+//! Mixing: between two clips by a weight, frame by frame or with their steps in time; and means of many.
+
+use std::sync::Arc;
+
+use glam::DVec3;
+
+use crate::clip::{self, Clip, Times};
+use crate::rotor::{Rotor, geodesic_mean, slerp};
+
+use super::frames::{self, Row, SLACK};
+use super::ground::{GroundMove, frame_above, tops};
+use super::registration::Registration;
+use super::{BlendError, Mask};
+
+/// A weight over time: knots `[secs, weight]` of the first clip, in order, with smooth monotone pieces between
+/// and the end values held outside. One knot is a constant.
+#[derive(Clone, Debug, PartialEq)]
+pub struct MixAlong {
+    /// The knots.
+    pub knots: Vec<[f64; 2]>,
+}
+
+impl MixAlong {
+    /// The same weight all along.
+    pub fn constant(weight: f64) -> Self {
+        Self { knots: vec![[0.0, weight]] }
+    }
+
+    /// The weight at a time.
+    pub fn at(&self, secs: f64) -> f64 {
+        let after = self.knots.partition_point(|knot| knot[0] <= secs);
+        match (after.checked_sub(1).map(|before| self.knots[before]), self.knots.get(after)) {
+            (Some([from, a]), Some(&[to, b])) => {
+                let share = super::mask::smooth_step((secs - from) / (to - from));
+                if a == b { a } else { a * (1.0 - share) + b * share }
+            }
+            (Some([_, only]), None) => only,
+            (None, Some(&[_, first])) => first,
+            (None, None) => 0.0,
+        }
+    }
+
+    /// The one weight, where it is the same all along.
+    pub fn only(&self) -> Option<f64> {
+        let first = self.knots.first().map_or(0.0, |knot| knot[1]);
+        self.knots.iter().all(|knot| knot[1] == first).then_some(first)
+    }
+
+    fn check(&self) -> Result<(), BlendError> {
+        match self.knots.iter().find(|knot| !(0.0..=1.0).contains(&knot[1])) {
+            Some(knot) => Err(BlendError::Weight { expected: "from 0 to 1", found: knot[1] }),
+            None => Ok(()),
+        }
+    }
+}
+
+/// Whose path and heading on the ground a mix follows.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub enum RootFrom {
+    /// Both, by the weight.
+    #[default]
+    Both,
+    /// The first clip's.
+    First,
+    /// The second clip's.
+    Second,
+}
+
+/// `a` and `b` mixed frame by frame at `a`'s frames up to the shorter end: each joint turns to the slerp on the near
+/// side, `slerp(a, b, weight · factor)`, places and sizes move on straight lines, the root included.
+///
+/// Where the weight is 0 the numbers are `a`'s, bit for bit; where it is 1 the turns are `b`'s as its format plays
+/// them. Both clips have the same skeleton.
+///
+/// # Errors
+/// When a weight is not within 0 and 1 or a clip has no frames.
+pub fn mix(a: &Clip, b: &Clip, weight: &MixAlong, mask: &Mask) -> Result<Clip, BlendError> {
+    weight.check()?;
+    frames::check_frames(a)?;
+    frames::check_frames(b)?;
+    let end = a.duration_secs.min(b.duration_secs);
+    let is_shorter = end < a.duration_secs - SLACK / a.grid.rate;
+    let base = if is_shorter { clip::cut(a, 0.0, end) } else { a.clone() };
+    let times: Vec<f64> = base.grid.times.iter().collect();
+    let weights: Vec<f64> = times.iter().map(|&secs| weight.at(secs)).collect();
+    let joints = (0..base.joints.len()).map(|joint| {
+        let factor = mask.of(joint);
+        let [turns, moves, sizes] = said(&base, b, joint);
+        let is_same = Arc::ptr_eq(&a.joints[joint], &b.joints[joint]);
+        if factor == 0.0 || is_same || weights.iter().all(|&weight| weight == 0.0) || !(turns || moves || sizes) {
+            return base.joints[joint].clone();
+        }
+        let share = |frame: usize| weights[frame] * factor;
+        let row = Row {
+            rotations: turns.then(|| {
+                let own = base.rotations_at(joint, &times);
+                between(&own, &b.rotations_at(joint, &times), &share)
+            }),
+            translations: moves.then(|| {
+                lines(&frames::places(&base, joint, &times), &frames::places(b, joint, &times), &share)
+            }),
+            scales: sizes.then(|| {
+                lines(&frames::sizes(&base, joint, &times), &frames::sizes(b, joint, &times), &share)
+            }),
+        };
+        // Where keys stand on frames, the ones that nothing is mixed into keep their numbers.
+        let on_frames = base.rotation(joint).is_none_or(|track| track.times == base.grid.times);
+        let kept = |frame: usize| (on_frames && share(frame) == 0.0).then_some(frame);
+        Arc::new(frames::tracks(&base.joints[joint], &base.grid.times, row, &kept))
+    });
+    let joints = joints.collect();
+    Ok(frames::clip_of(&base, base.grid.times.clone(), joints))
+}
+
+/// What either clip says of a joint.
+pub(super) fn said(a: &Clip, b: &Clip, joint: usize) -> [bool; 3] {
+    let (own, other) = (frames::says(a, joint), frames::says(b, joint));
+    let (rest, their_rest) = (a.skeleton.joints()[joint].rest, b.skeleton.joints()[joint].rest);
+    [
+        own[0] || other[0] || rest.rotation != their_rest.rotation,
+        own[1] || other[1] || rest.translation != their_rest.translation,
+        own[2] || other[2] || rest.scale != their_rest.scale,
+    ]
+}
+
+/// The short way between turns; the ends are exact.
+pub(super) fn between(a: &[Rotor], b: &[Rotor], share: &dyn Fn(usize) -> f64) -> Vec<Rotor> {
+    let one = |(frame, (&a, &b)): (usize, (&Rotor, &Rotor))| match share(frame) {
+        0.0 => a,
+        1.0 => b,
+        share => slerp(a, b, share).normalize(),
+    };
+    a.iter().zip(b).enumerate().map(one).collect()
+}
+
+pub(super) fn lines(a: &[DVec3], b: &[DVec3], share: &dyn Fn(usize) -> f64) -> Vec<DVec3> {
+    let one = |(frame, (&a, &b)): (usize, (&DVec3, &DVec3))| match share(frame) {
+        0.0 => a,
+        1.0 => b,
+        // What is equal stays so to the last bit.
+        share => a + (b - a) * share,
+    };
+    a.iter().zip(b).enumerate().map(one).collect()
+}
+
+/// `a` and `b` mixed with their steps in time: both are sampled where `along` says that they belong together, `b` is turned to
+/// `a`'s heading there, and the paces blend too, so the mix of a walk and a run of different lengths has a length between.
+///
+/// The path on the ground goes on from `a`'s first place: at each frame it moves by what both move, by the weight, each in
+/// its own heading (Kovar & Gleicher 2003). Weight 0 is `a`, bit for bit; weight 1 is `b` set down at `a`'s place.
+///
+/// # Errors
+/// When a weight is not within 0 and 1 or a clip has no frames.
+pub fn mix_aligned(
+    a: &Clip,
+    b: &Clip,
+    along: &Registration,
+    weight: &MixAlong,
+    mask: &Mask,
+    root: RootFrom,
+) -> Result<Clip, BlendError> {
+    weight.check()?;
+    frames::check_frames(a)?;
+    frames::check_frames(b)?;
+    if weight.only() == Some(0.0) {
+        return Ok(a.clone());
+    }
+    let stops = along.stops(weight, a.grid.rate);
+    let times = Times::Even { step_secs: 1.0 / a.grid.rate, count: stops.len() };
+    let [own_secs, other_secs]: [Vec<f64>; 2] =
+        [stops.iter().map(|stop| stop.first_secs).collect(), stops.iter().map(|stop| stop.second_secs).collect()];
+    let weights: Vec<f64> = own_secs.iter().map(|&secs| weight.at(secs)).collect();
+    let tops = tops(a).into_iter().chain(tops(b)).collect::<std::collections::BTreeSet<usize>>();
+    let centre = centre(a);
+    let ground_weight = |frame: usize| match root {
+        RootFrom::Both => weights[frame] * tops.first().map_or(1.0, |&top| mask.of(top)),
+        RootFrom::First => 0.0,
+        RootFrom::Second => 1.0,
+    };
+    let [own_path, other_path] =
+        [(a, &own_secs), (b, &other_secs)].map(|(clip, secs)| path_of(clip, centre, secs));
+    let moves = ground_moves(&own_path, &other_path, &stops, &ground_weight);
+    let joints = (0..a.joints.len()).map(|joint| {
+        let factor = mask.of(joint);
+        let share = |frame: usize| weights[frame] * factor;
+        let [turns, places, sizes] = said(a, b, joint);
+        let is_top = tops.contains(&joint);
+        if !(turns || places || sizes || is_top) {
+            return a.joints[joint].clone();
+        }
+        let mut own_turns = a.rotations_at(joint, &own_secs);
+        let mut other_turns = b.rotations_at(joint, &other_secs);
+        let mut own_places = frames::places(a, joint, &own_secs);
+        let mut other_places = frames::places(b, joint, &other_secs);
+        if is_top {
+            let above = frame_above(a, joint);
+            for (frame, [own, other]) in moves.iter().enumerate() {
+                (own_turns[frame], own_places[frame]) =
+                    set_down(*own, above, own_turns[frame], own_places[frame]);
+                (other_turns[frame], other_places[frame]) =
+                    set_down(*other, above, other_turns[frame], other_places[frame]);
+            }
+        }
+        let row = Row {
+            rotations: (turns || is_top).then(|| between(&own_turns, &other_turns, &share)),
+            translations: (places || is_top).then(|| lines(&own_places, &other_places, &share)),
+            scales: sizes.then(|| {
+                lines(&frames::sizes(a, joint, &own_secs), &frames::sizes(b, joint, &other_secs), &share)
+            }),
+        };
+        Arc::new(frames::tracks(&a.joints[joint], &times, row, &|_| None))
+    });
+    let joints = joints.collect();
+    Ok(frames::clip_of(a, times.clone(), joints))
+}
+
+/// A top joint's local turn and place after a move of the scene.
+pub(super) fn set_down(
+    place: GroundMove,
+    (turn_above, scene_from_above): (Rotor, glam::DAffine3),
+    turn: Rotor,
+    at: DVec3,
+) -> (Rotor, DVec3) {
+    let turned = turn_above.reverse() * place.rotor() * turn_above * turn;
+    let moved = place.apply(scene_from_above.transform_point3(at));
+    (turned, scene_from_above.inverse().transform_point3(moved))
+}
+
+/// The joint whose place counts as the body's: the first with more than one joint below it, else the first top.
+pub(super) fn centre(clip: &Clip) -> usize {
+    let skeleton = &clip.skeleton;
+    let below = |joint: usize| {
+        let mut count = 0;
+        let mut open = vec![joint];
+        while let Some(next) = open.pop() {
+            count += 1;
+            open.extend(skeleton.children(next));
+        }
+        count
+    };
+    let Some(top) = tops(clip).into_iter().max_by_key(|&top| (below(top), usize::MAX - top)) else { return 0 };
+    let mut at = top;
+    while let [only] = skeleton.children(at) {
+        at = *only;
+    }
+    if skeleton.children(at).is_empty() { top } else { at }
+}
+
+/// Where the body's centre stands at each time.
+fn path_of(clip: &Clip, centre: usize, secs: &[f64]) -> Vec<DVec3> {
+    const ROWS: usize = 256;
+    let chunk = |part: &[f64]| {
+        let worlds = clip.worlds_at(part);
+        (0..part.len()).map(|time| worlds.position(centre, time)).collect::<Vec<DVec3>>()
+    };
+    secs.chunks(ROWS).flat_map(chunk).collect()
+}
+
+/// For each frame the moves that set down the first clip's pose and the second's.
+fn ground_moves(
+    own: &[DVec3],
+    other: &[DVec3],
+    stops: &[super::registration::Stop],
+    weight: &dyn Fn(usize) -> f64,
+) -> Vec<[GroundMove; 2]> {
+    let mut at = own.first().copied().unwrap_or_default();
+    // How far the result's heading has left the first clip's.
+    let mut drift = 0.0;
+    let mut moves = Vec::with_capacity(stops.len());
+    for frame in 0..stops.len() {
+        if frame > 0 {
+            let share = weight(frame - 1);
+            let turned = |turn_rad: f64, step: DVec3| GroundMove { turn_rad, x: 0.0, z: 0.0 }.apply(step);
+            let theirs = turned(stops[frame - 1].turn_rad, other[frame] - other[frame - 1]);
+            at += turned(drift, (own[frame] - own[frame - 1]) * (1.0 - share) + theirs * share);
+            drift -= share * (stops[frame].turn_rad - stops[frame - 1].turn_rad);
+        }
+        let place = |turn_rad: f64, from: DVec3| {
+            let turned = GroundMove { turn_rad, x: 0.0, z: 0.0 }.apply(from);
+            GroundMove { turn_rad, x: at.x - turned.x, z: at.z - turned.z }
+        };
+        moves.push([place(drift, own[frame]), place(drift + stops[frame].turn_rad, other[frame])]);
+    }
+    moves
+}
+
+/// The mean of many clips, frame by frame at the first clip's frames up to the shortest end: the geodesic mean of each
+/// joint's turns (Karcher 1977), the weighted mean of places and sizes. The order of clips does not matter but for the rate.
+///
+/// # Errors
+/// When there is no clip, a weight is negative, all are 0, or a clip has no frames.
+pub fn mix_many(clips: &[(&Clip, f64)]) -> Result<Clip, BlendError> {
+    let Some(&(first, _)) = clips.first() else { return Err(BlendError::NoFrames(String::new())) };
+    let sum: f64 = clips.iter().map(|&(_, weight)| weight).sum();
+    if let Some(&(_, found)) = clips.iter().find(|(_, weight)| *weight < 0.0 || !weight.is_finite()) {
+        return Err(BlendError::Weight { expected: "of at least 0", found });
+    }
+    if sum <= 0.0 {
+        return Err(BlendError::Weight { expected: "above 0 for at least one clip", found: sum });
+    }
+    for (clip, _) in clips {
+        frames::check_frames(clip)?;
+    }
+    let end = clips.iter().map(|(clip, _)| clip.duration_secs).fold(f64::INFINITY, f64::min);
+    let base = if end < first.duration_secs { clip::cut(first, 0.0, end) } else { first.clone() };
+    let times: Vec<f64> = base.grid.times.iter().collect();
+    let joints = (0..base.joints.len()).map(|joint| {
+        let says = |part: usize| clips.iter().any(|(clip, _)| frames::says(clip, joint)[part]);
+        let sampled = |of: &dyn Fn(&Clip) -> Vec<DVec3>| {
+            let all: Vec<Vec<DVec3>> = clips.iter().map(|(clip, _)| of(clip)).collect();
+            let mean = |frame: usize| {
+                let parts = all.iter().zip(clips).map(|(row, (_, weight))| row[frame] * (weight / sum));
+                parts.sum::<DVec3>()
+            };
+            (0..times.len()).map(mean).collect::<Vec<DVec3>>()
+        };
+        let turns = says(0).then(|| {
+            let all: Vec<Vec<Rotor>> = clips.iter().map(|(clip, _)| clip.rotations_at(joint, &times)).collect();
+            let mean = |frame: usize| {
+                let weighted: Vec<(Rotor, f64)> =
+                    all.iter().zip(clips).map(|(row, (_, weight))| (row[frame], weight / sum)).collect();
+                geodesic_mean(&weighted).unwrap_or(all[0][frame])
+            };
+            (0..times.len()).map(mean).collect::<Vec<Rotor>>()
+        });
+        let row = Row {
+            rotations: turns,
+            translations: says(1).then(|| sampled(&|clip| frames::places(clip, joint, &times))),
+            scales: says(2).then(|| sampled(&|clip| frames::sizes(clip, joint, &times))),
+        };
+        Arc::new(frames::tracks(&base.joints[joint], &base.grid.times, row, &|_| None))
+    });
+    let joints = joints.collect();
+    Ok(frames::clip_of(&base, base.grid.times.clone(), joints))
+}

@@ -1,0 +1,27 @@
+//! Two clips, or more, become one motion: joined, mixed or layered.
+//!
+//! All functions take clips of one skeleton ([`fit`] brings a clip of another joint order or length unit there; a clip
+//! of another body is carried over first, see the layer above). The result has the first clip's skeleton and rate.
+
+mod add;
+mod cloud;
+mod error;
+mod fit;
+mod frames;
+mod ground;
+mod join;
+mod mask;
+mod mix;
+mod registration;
+mod warp;
+
+pub use add::{Reference, Side, add};
+pub use cloud::{Cloud, DistancePicture, Landmarks};
+pub use error::BlendError;
+pub use fit::fit;
+pub use ground::{GroundMove, moved};
+pub use join::{JoinPlace, best_places, join, join_distances};
+pub use mask::Mask;
+pub use mix::{MixAlong, RootFrom, mix, mix_aligned, mix_many};
+pub use registration::{Registration, align};
+pub use warp::{WarpPath, time_warp};
