@@ -33,6 +33,7 @@ pub(super) enum Command {
     Demo(DemoArgs),
     Snags(SnagsArgs),
     Mend(MendArgs),
+    Blend(BlendArgs),
     Convert(ConvertArgs),
     Sample(SampleArgs),
     Proof(ProofArgs),
@@ -90,6 +91,44 @@ pub(super) struct MendArgs {
     /// Print one JSON object a line for each clip
     #[arg(long)]
     pub(super) json: bool,
+    /// Allow an input to be replaced
+    #[arg(long)]
+    pub(super) force: bool,
+    #[command(flatten)]
+    pub(super) csv: CsvArgs,
+}
+
+/// Make one clip of two: joined, mixed or layered
+///
+/// The result has the first clip's skeleton, rate and file. Exported curves that drive a machine need that machine's
+/// own limits and guarding, local safety codes and a licensed or qualified person.
+#[derive(Debug, Args)]
+#[command(group = clap::ArgGroup::new("how").required(true).args(["join", "mix", "add"]))]
+pub(super) struct BlendArgs {
+    /// First clip
+    #[arg(value_name = "A")]
+    pub(super) first: String,
+    /// Second clip
+    #[arg(value_name = "B")]
+    pub(super) second: String,
+    /// File to write; its extension gives the format
+    #[arg(short, long, value_name = "OUT")]
+    pub(super) output: PathBuf,
+    /// B after A, overlapping so many seconds, set down where A is and as it is heading
+    #[arg(long, value_name = "SECONDS")]
+    pub(super) join: Option<f64>,
+    /// Between A (0) and B (1), frame by frame up to the shorter end
+    #[arg(long, value_name = "W")]
+    pub(super) mix: Option<f64>,
+    /// What B does beyond its first frame laid over A, so many times
+    #[arg(long, value_name = "W", allow_negative_numbers = true)]
+    pub(super) add: Option<f64>,
+    /// With --mix: bring steps into time with each other, and B onto A's ground
+    #[arg(long, requires = "mix")]
+    pub(super) align: bool,
+    /// Reach these joints only; all others follow A
+    #[arg(long, value_name = "J,…", value_delimiter = ',')]
+    pub(super) joints: Option<Vec<String>>,
     /// Allow an input to be replaced
     #[arg(long)]
     pub(super) force: bool,

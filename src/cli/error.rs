@@ -3,6 +3,7 @@
 use std::io;
 use std::path::PathBuf;
 
+use crate::blend::BlendError;
 use crate::exchange::{self, WriteError, disk, ron};
 use crate::mend::MendError;
 use crate::proof::ProofError;
@@ -55,6 +56,16 @@ pub enum CliError {
         path: PathBuf,
         /// Why.
         source: MendError,
+    },
+    /// Two clips that can't be blended.
+    #[error("{}", with_advice(&format!("{} and {}: {source}", .first.display(), .second.display()), "choose another"))]
+    Blend {
+        /// The first clip's file.
+        first: PathBuf,
+        /// The second clip's file.
+        second: PathBuf,
+        /// Why.
+        source: BlendError,
     },
     /// A picture that can't be made.
     #[error("{path}: {source}; choose another size with --size", path = path.display())]

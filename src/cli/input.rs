@@ -198,7 +198,7 @@ pub(super) fn no_file_to_open(path: &Path) -> Option<CliError> {
     let is_word = text.chars().all(|letter| letter.is_ascii_lowercase());
     let (expected, found, advice) = if is_word {
         (
-            "a file or one of demo, snags, mend, convert, sample, proof, picture",
+            "a file or one of demo, snags, mend, blend, convert, sample, proof, picture",
             "neither",
             "see turnwright --help",
         )

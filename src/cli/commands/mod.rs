@@ -1,5 +1,6 @@
 //! The commands, one file each.
 
+pub(super) mod blend;
 pub(super) mod convert;
 pub(super) mod demo;
 pub(super) mod mend;

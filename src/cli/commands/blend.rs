@@ -1,0 +1,69 @@
+//! `blend`: one clip of two.
+
+use std::sync::Arc;
+
+use crate::blend::{self, BlendError, JoinPlace, Mask, MixAlong, RootFrom};
+use crate::cli::DONE;
+use crate::cli::args::BlendArgs;
+use crate::cli::error::CliError;
+use crate::cli::input;
+use crate::cli::output::Output;
+use crate::clip::Clip;
+use crate::exchange::{self, Format, Guard};
+
+/// The result takes the first clip's place in its file; the file's other clips stay.
+pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError> {
+    Format::of(&args.output)?;
+    let options = args.csv.open_options();
+    let first = input::open_one(&args.first, &options, output)?;
+    let second = input::open_one(&args.second, &options, output)?;
+    let guard = Guard { inputs: [first.files(), second.files()].concat(), force: args.force };
+    guard.check(&args.output)?;
+    for one in [&first, &second] {
+        if one.chosen.len() > 1 {
+            let label = one.source.clip_label(one.first());
+            let text = format!("holds {} clips; took the first, {label}", one.chosen.len());
+            output.note(&one.source.path, &text);
+        }
+    }
+    let failed = |source| CliError::Blend {
+        first: first.source.path.clone(),
+        second: second.source.path.clone(),
+        source,
+    };
+    let blended = blended(args, first.clip(), second.clip()).map_err(failed)?;
+    output.say(&format!(
+        "{:.3} s and {:.3} s became {:.3} s",
+        first.clip().duration_secs,
+        second.clip().duration_secs,
+        blended.duration_secs
+    ));
+    let mut results = first.results.clone();
+    results[first.first()] = blended;
+    let written = exchange::write(&first.source, &results, Some(first.first()), &args.output, &guard)?;
+    output.notes(&args.output, &written.notes);
+    output.say(&format!("wrote {}", args.output.display()));
+    Ok(DONE)
+}
+
+fn blended(args: &BlendArgs, a: &Arc<Clip>, b: &Arc<Clip>) -> Result<Arc<Clip>, BlendError> {
+    let b = blend::fit(b, &a.skeleton)?;
+    let mask = match &args.joints {
+        Some(labels) => Mask::joints(&a.skeleton, labels)?,
+        None => Mask::all(&a.skeleton),
+    };
+    let made = if let Some(overlap_secs) = args.join {
+        blend::join(a, &b, JoinPlace::end_to_start(a, overlap_secs), &mask)?
+    } else if let Some(weight) = args.add {
+        blend::add(a, &b, weight, blend::Reference::First, blend::Side::Body, &mask)?
+    } else {
+        let weight = MixAlong::constant(args.mix.unwrap_or_default());
+        if args.align {
+            let along = blend::align(a, &b)?;
+            blend::mix_aligned(a, &b, &along, &weight, &mask, RootFrom::Both)?
+        } else {
+            blend::mix(a, &b, &weight, &mask)?
+        }
+    };
+    Ok(Arc::new(made))
+}
