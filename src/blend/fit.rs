@@ -9,12 +9,15 @@ use super::BlendError;
 
 /// Rest turns that differ by less are the same, in radians (0.01°): files round them.
 const SAME_TURN_RAD: f64 = 1.8e-4;
-/// Limbs may differ so much from the common scale, as a share of the body's size.
-const SAME_LENGTH: f64 = 0.02;
+/// Limbs may point so far apart at rest, in radians (25°): bodies of one make differ so in their hips and shoulders.
+const SAME_DIRECTION_RAD: f64 = 0.436;
+/// Shorter offsets than this share of the body's size say nothing of a direction.
+const SHORT: f64 = 0.04;
 
 /// `clip` on `skeleton`: its joints brought into the skeleton's order by their labels, its lengths to the skeleton's by one
-/// factor. The very clip when it already has this skeleton. Joints of the clip alone are left out; joints it lacks
-/// that stand still in their rest (tips, fingers) keep it.
+/// factor. Turns are taken as they are, so limbs may be longer or shorter (two people captured on one skeleton) but have to
+/// point alike at rest. The very clip when it already has this skeleton. Joints of the clip alone are left out; ends of limbs
+/// that it lacks keep their rest.
 ///
 /// # Errors
 /// When a joint has no partner of its name under the same parent, or rests turned another way: the body is another one.
@@ -49,8 +52,10 @@ pub fn fit(clip: &Arc<Clip>, skeleton: &Arc<Skeleton>) -> Result<Arc<Clip>, Blen
         let is_turned = own.rotation.turn_to(other_rest.rotation) > SAME_TURN_RAD;
         // A root's rest place says where the body stands, not what it is.
         let is_root = skeleton.parent_joint(joint).is_none();
-        let offset = own.translation.distance(other_rest.translation * scale);
-        if is_turned || (!is_root && offset > SAME_LENGTH * size) {
+        let offsets = [own.translation, other_rest.translation * scale];
+        let is_long = offsets.iter().all(|offset| offset.length() > SHORT * size);
+        let points_elsewhere = is_long && offsets[0].angle_between(offsets[1]) > SAME_DIRECTION_RAD;
+        if is_turned || (!is_root && points_elsewhere) {
             return Err(other(joint));
         }
     }
