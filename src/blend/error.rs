@@ -20,7 +20,9 @@ pub enum BlendError {
     #[error("expected a clip with frames, found none in `{0}`")]
     NoFrames(String),
     /// The overlap does not fit in both clips.
-    #[error("expected an overlap above 0 and at most {most_secs:.3} s, the shorter clip, found {found_secs} s")]
+    #[error(
+        "expected an overlap above 0 and at most {most_secs:.3} s, the shorter clip, found {found_secs} s"
+    )]
     Overlap {
         /// The longest overlap there can be.
         most_secs: f64,

@@ -11,6 +11,8 @@ use super::BlendError;
 const SAME_TURN_RAD: f64 = 1.8e-4;
 /// Limbs may point so far apart at rest, in radians (25°): bodies of one make differ so in their hips and shoulders.
 const SAME_DIRECTION_RAD: f64 = 0.436;
+/// Lengths of one unit: their common factor lies within. Beyond it places are scaled.
+const SAME_UNIT: std::ops::Range<f64> = 0.75..1.34;
 /// Shorter offsets than this share of the body's size say nothing of a direction.
 const SHORT: f64 = 0.04;
 
@@ -32,10 +34,11 @@ pub fn fit(clip: &Arc<Clip>, skeleton: &Arc<Skeleton>) -> Result<Arc<Clip>, Blen
     let lost = |&&joint: &&usize| partner[joint].is_none();
     let missing = listed.iter().filter(lost).count();
     // A body may have a few more leaves than the other; a body without a partner for an inner joint is another.
-    let inner_lost =
-        listed.iter().filter(lost).find(|&&joint| !skeleton.children(joint).is_empty()).or(listed
-            .iter()
-            .find(|joint| lost(joint) && 2 * missing > listed.len()));
+    let inner_lost = listed
+        .iter()
+        .filter(lost)
+        .find(|&&joint| !skeleton.children(joint).is_empty())
+        .or(listed.iter().find(|joint| lost(joint) && 2 * missing > listed.len()));
     let other = |joint: usize| BlendError::OtherSkeleton {
         missing: missing.max(1),
         count: listed.len(),
@@ -45,6 +48,8 @@ pub fn fit(clip: &Arc<Clip>, skeleton: &Arc<Skeleton>) -> Result<Arc<Clip>, Blen
         return Err(other(joint));
     }
     let scale = common_scale(skeleton, theirs, &partner);
+    // Two people differ a little; another unit differs much.
+    let scale = if SAME_UNIT.contains(&scale) { 1.0 } else { scale };
     let size = size(skeleton);
     for &joint in &listed {
         let Some(their) = partner[joint] else { continue };
@@ -66,7 +71,10 @@ pub fn fit(clip: &Arc<Clip>, skeleton: &Arc<Skeleton>) -> Result<Arc<Clip>, Blen
         }
         VectorTrack {
             keys: track.keys.iter().map(|&key| key * scale).collect(),
-            tangents: track.tangents.as_ref().map(|all| all.iter().map(|pair| pair.map(|v| v * scale)).collect()),
+            tangents: track
+                .tangents
+                .as_ref()
+                .map(|all| all.iter().map(|pair| pair.map(|v| v * scale)).collect()),
             ..track.clone()
         }
     };

@@ -5,8 +5,8 @@ use std::sync::Arc;
 use glam::DVec3;
 
 use crate::clip::{
-    Clip, FileAngles, FrameGrid, JointTracks, PathKind, Paths, RotationTrack, Stored, Times, VectorPath, VectorTrack,
-    continuous_angles,
+    Clip, FileAngles, FrameGrid, JointTracks, PathKind, Paths, RotationTrack, Stored, Times, VectorPath,
+    VectorTrack, continuous_angles,
 };
 use crate::rotor::Rotor;
 
@@ -100,10 +100,9 @@ fn rotation(like: Option<&RotationTrack>, times: &Times, keys: Vec<Rotor>, kept:
         aligned.push(key);
     }
     let stored = match like.map(|track| &track.stored) {
-        Some(Stored::Angles(angles)) => Stored::Angles(FileAngles {
-            degrees: angles_of(angles, &keys, kept).into(),
-            ..angles.clone()
-        }),
+        Some(Stored::Angles(angles)) => {
+            Stored::Angles(FileAngles { degrees: angles_of(angles, &keys, kept).into(), ..angles.clone() })
+        }
         Some(Stored::PlaneAngles(degrees)) => {
             let mut own: Vec<[f64; 3]> = keys.iter().map(|key| key.plane_angles().to_degrees()).collect();
             keep(&mut own, degrees, kept);
@@ -142,10 +141,5 @@ fn angles_of(angles: &FileAngles, keys: &[Rotor], kept: Kept<'_>) -> Vec<[f64; 3
 /// A clip of the first clip's skeleton from the tracks of each joint.
 pub(super) fn clip_of(first: &Clip, times: Times, joints: Vec<Arc<JointTracks>>) -> Clip {
     let duration_secs = times.span().map_or(0.0, |(_, last)| last);
-    Clip {
-        joints,
-        duration_secs,
-        grid: FrameGrid { times, rate: first.grid.rate },
-        ..first.clone()
-    }
+    Clip { joints, duration_secs, grid: FrameGrid { times, rate: first.grid.rate }, ..first.clone() }
 }

@@ -28,11 +28,7 @@ impl GroundMove {
     /// Where a point of the scene goes.
     pub fn apply(self, point: DVec3) -> DVec3 {
         let (sin, cos) = self.turn_rad.sin_cos();
-        DVec3::new(
-            point.x * cos + point.z * sin + self.x,
-            point.y,
-            -point.x * sin + point.z * cos + self.z,
-        )
+        DVec3::new(point.x * cos + point.z * sin + self.x, point.y, -point.x * sin + point.z * cos + self.z)
     }
 
     /// A direction, turned.
@@ -104,7 +100,10 @@ pub fn moved(clip: &Clip, place: GroundMove) -> Clip {
                 let tangents = tangents.map(|all| all.iter().map(|pair| pair.map(turned)).collect());
                 RotationTrack { tangents, ..track.with_keys(&changes) }
             }
-            _ => RotationTrack::from_rotors(clip.grid.times.clone(), vec![turned(rest.rotation); clip.grid.count()]),
+            _ => RotationTrack::from_rotors(
+                clip.grid.times.clone(),
+                vec![turned(rest.rotation); clip.grid.count()],
+            ),
         };
         let translation = match &own.translation {
             Some(track) if !track.keys.is_empty() => VectorTrack {

@@ -36,7 +36,11 @@ impl JoinPlace {
             && self.first_secs + self.overlap_secs <= a.duration_secs + slack
             && self.second_secs >= -slack
             && self.second_secs + self.overlap_secs <= b.duration_secs + slack;
-        if fits { Ok(()) } else { Err(BlendError::Overlap { most_secs: shorter, found_secs: self.overlap_secs }) }
+        if fits {
+            Ok(())
+        } else {
+            Err(BlendError::Overlap { most_secs: shorter, found_secs: self.overlap_secs })
+        }
     }
 }
 
@@ -92,7 +96,8 @@ pub fn join(a: &Clip, b: &Clip, place: JoinPlace, mask: &Mask) -> Result<Clip, B
             }
         }
         let row = Row {
-            rotations: (turns || is_top).then(|| between(&a.rotations_at(joint, &own_secs), &other_turns, &share)),
+            rotations: (turns || is_top)
+                .then(|| between(&a.rotations_at(joint, &own_secs), &other_turns, &share)),
             translations: (moves || is_top)
                 .then(|| lines(&frames::places(a, joint, &own_secs), &other_places, &share)),
             scales: sizes.then(|| {
@@ -124,7 +129,12 @@ fn ground_between(a: &Clip, b: &Clip, place: JoinPlace) -> super::GroundMove {
 ///
 /// # Errors
 /// When the overlap does not fit in both clips or one has no frames.
-pub fn join_distances(a: &Clip, b: &Clip, overlap_secs: f64, most: usize) -> Result<DistancePicture, BlendError> {
+pub fn join_distances(
+    a: &Clip,
+    b: &Clip,
+    overlap_secs: f64,
+    most: usize,
+) -> Result<DistancePicture, BlendError> {
     frames::check_frames(a)?;
     frames::check_frames(b)?;
     JoinPlace { first_secs: 0.0, second_secs: 0.0, overlap_secs }.check(a, b)?;
@@ -140,7 +150,9 @@ pub fn join_distances(a: &Clip, b: &Clip, overlap_secs: f64, most: usize) -> Res
     let windows = |clip: &Clip, starts: &[f64]| {
         let secs: Vec<f64> = starts
             .iter()
-            .flat_map(|start| (0..SAMPLES).map(move |k| start + overlap_secs * k as f64 / (SAMPLES - 1) as f64))
+            .flat_map(|start| {
+                (0..SAMPLES).map(move |k| start + overlap_secs * k as f64 / (SAMPLES - 1) as f64)
+            })
             .collect();
         Cloud::of(clip, &secs, &landmarks)
     };
@@ -163,8 +175,10 @@ pub fn best_places(picture: &DistancePicture, overlap_secs: f64, count: usize) -
         for column in 0..columns {
             let own = picture.at(row, column);
             let is_least = (row.saturating_sub(1)..=(row + 1).min(rows - 1)).all(|near_row| {
-                (column.saturating_sub(1)..=(column + 1).min(columns - 1))
-                    .all(|near| own < picture.at(near_row, near) || (near_row, near) >= (row, column) && own <= picture.at(near_row, near))
+                (column.saturating_sub(1)..=(column + 1).min(columns - 1)).all(|near| {
+                    own < picture.at(near_row, near)
+                        || (near_row, near) >= (row, column) && own <= picture.at(near_row, near)
+                })
             });
             if is_least {
                 let place = JoinPlace {

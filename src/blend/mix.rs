@@ -87,7 +87,11 @@ pub fn mix(a: &Clip, b: &Clip, weight: &MixAlong, mask: &Mask) -> Result<Clip, B
         let factor = mask.of(joint);
         let [turns, moves, sizes] = said(&base, b, joint);
         let is_same = Arc::ptr_eq(&a.joints[joint], &b.joints[joint]);
-        if factor == 0.0 || is_same || weights.iter().all(|&weight| weight == 0.0) || !(turns || moves || sizes) {
+        if factor == 0.0
+            || is_same
+            || weights.iter().all(|&weight| weight == 0.0)
+            || !(turns || moves || sizes)
+        {
             return base.joints[joint].clone();
         }
         let share = |frame: usize| weights[frame] * factor;
@@ -167,8 +171,10 @@ pub fn mix_aligned(
     }
     let stops = along.stops(weight, a.grid.rate);
     let times = Times::Even { step_secs: 1.0 / a.grid.rate, count: stops.len() };
-    let [own_secs, other_secs]: [Vec<f64>; 2] =
-        [stops.iter().map(|stop| stop.first_secs).collect(), stops.iter().map(|stop| stop.second_secs).collect()];
+    let [own_secs, other_secs]: [Vec<f64>; 2] = [
+        stops.iter().map(|stop| stop.first_secs).collect(),
+        stops.iter().map(|stop| stop.second_secs).collect(),
+    ];
     let weights: Vec<f64> = own_secs.iter().map(|&secs| weight.at(secs)).collect();
     let tops = tops(a).into_iter().chain(tops(b)).collect::<std::collections::BTreeSet<usize>>();
     let centre = centre(a);
@@ -238,7 +244,9 @@ pub(super) fn centre(clip: &Clip) -> usize {
         }
         count
     };
-    let Some(top) = tops(clip).into_iter().max_by_key(|&top| (below(top), usize::MAX - top)) else { return 0 };
+    let Some(top) = tops(clip).into_iter().max_by_key(|&top| (below(top), usize::MAX - top)) else {
+        return 0;
+    };
     let mut at = top;
     while let [only] = skeleton.children(at) {
         at = *only;
@@ -315,7 +323,8 @@ pub fn mix_many(clips: &[(&Clip, f64)]) -> Result<Clip, BlendError> {
             (0..times.len()).map(mean).collect::<Vec<DVec3>>()
         };
         let turns = says(0).then(|| {
-            let all: Vec<Vec<Rotor>> = clips.iter().map(|(clip, _)| clip.rotations_at(joint, &times)).collect();
+            let all: Vec<Vec<Rotor>> =
+                clips.iter().map(|(clip, _)| clip.rotations_at(joint, &times)).collect();
             let mean = |frame: usize| {
                 let weighted: Vec<(Rotor, f64)> =
                     all.iter().zip(clips).map(|(row, (_, weight))| (row[frame], weight / sum)).collect();

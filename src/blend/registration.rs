@@ -2,11 +2,11 @@
 
 use crate::clip::Clip;
 
+use super::BlendError;
 use super::cloud::{Cloud, Landmarks};
 use super::frames;
 use super::mix::MixAlong;
 use super::warp::{Band, WarpPath, diagonal_band, warp_within};
-use super::BlendError;
 
 /// Which times of two clips belong together, strictly increasing in both, and how the second is to be turned there to
 /// face as the first does. The ends belong together.
@@ -201,7 +201,12 @@ impl Registration {
         let mut now = 0.0;
         for step in 0..=steps {
             let stop = self.at(step as f64 / steps as f64);
-            let mean = |w: f64| w.mul_add(stop.second_secs - before.second_secs, (1.0 - w) * (stop.first_secs - before.first_secs));
+            let mean = |w: f64| {
+                w.mul_add(
+                    stop.second_secs - before.second_secs,
+                    (1.0 - w) * (stop.first_secs - before.first_secs),
+                )
+            };
             now = match only {
                 Some(w) => (1.0 - w) * stop.first_secs + w * stop.second_secs,
                 None => now + mean(weight.at(f64::midpoint(before.first_secs, stop.first_secs))),
@@ -219,7 +224,12 @@ impl Registration {
                 }
                 let (from, to) = (clock[cell], clock[cell + 1]);
                 let share = if to > from { ((secs - from) / (to - from)).clamp(0.0, 1.0) } else { 0.0 };
-                let place = self.place_of(only, [cell as f64, cell as f64 + 1.0].map(|at| at / steps as f64), share, secs);
+                let place = self.place_of(
+                    only,
+                    [cell as f64, cell as f64 + 1.0].map(|at| at / steps as f64),
+                    share,
+                    secs,
+                );
                 let mut stop = self.at(place);
                 if only == Some(1.0) {
                     stop.second_secs = secs;

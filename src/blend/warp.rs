@@ -147,9 +147,10 @@ pub(super) fn warp_within(
 
 /// The least of some states, and which.
 fn best(cell: &[f64], states: impl IntoIterator<Item = usize>) -> (f64, usize) {
-    states.into_iter().map(|state| (cell[state], state)).fold((f64::INFINITY, 0), |least, one| {
-        if one.0 < least.0 { one } else { least }
-    })
+    states
+        .into_iter()
+        .map(|state| (cell[state], state))
+        .fold((f64::INFINITY, 0), |least, one| if one.0 < least.0 { one } else { least })
 }
 
 #[cfg(test)]

@@ -7,7 +7,8 @@ use turnwright::exchange::disk;
 
 /// Lowest first.
 const LAYERS: [&str; 13] = [
-    "rotor", "skeleton", "clip", "snag", "mend", "blend", "scene", "exchange", "raster", "proof", "demo", "cli", "app",
+    "rotor", "skeleton", "clip", "snag", "mend", "blend", "scene", "exchange", "raster", "proof", "demo",
+    "cli", "app",
 ];
 
 fn each_source_line(folder: &Path, seen: &mut dyn FnMut(&str, &str)) -> usize {

@@ -3,6 +3,7 @@
 //! | module | what belongs there |
 //! |---|---|
 //! | `batch` | the bulk kernels: against 50-digit values, against the functions for one rotor, same bits at every level |
+//! | `blend` | joining, mixing and layering: against scipy's slerp and mean, and clips that were cut or slowed |
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
 //! | `contacts` | feet: which limbs stand, when, and what holding them comes to |
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
@@ -32,6 +33,7 @@
 //! | `strategies` | the random values; no tests of its own |
 //! | `support` | where the outside files are, and comparing with a tolerance; tested by itself only |
 mod batch;
+mod blend;
 mod bvh;
 mod commands;
 mod contacts;

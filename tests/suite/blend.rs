@@ -1,0 +1,385 @@
+//! Two clips become one: what each form of blend promises, on the outside clips and on worked examples.
+
+#![expect(clippy::unwrap_used, reason = "the helpers of a test fail as the test does")]
+
+use std::sync::Arc;
+
+use glam::DVec3;
+use turnwright::blend::{
+    self, BlendError, GroundMove, JoinPlace, Mask, MixAlong, Reference, RootFrom, Side, add, align, fit,
+    join, join_distances, mix, mix_aligned, mix_many, moved,
+};
+use turnwright::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
+use turnwright::exchange::{self, OpenOptions};
+use turnwright::rotor::{Axis, Bivector, Rotor};
+use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
+
+use crate::support::{assert_close, largest, numbers, shared, shared_json};
+
+fn clips(path: &str) -> Option<Vec<Arc<Clip>>> {
+    Some(exchange::open(&shared(path)?, &OpenOptions::default()).unwrap().clips)
+}
+
+fn clip(path: &str, name: &str) -> Option<Arc<Clip>> {
+    clips(path)?.into_iter().find(|clip| clip.name == name)
+}
+
+/// The pairs that every form of blend meets: a walk and a run of an animal, two takes of one maker, game clips.
+fn pairs() -> Vec<(&'static str, Arc<Clip>, Arc<Clip>)> {
+    let mut pairs = Vec::new();
+    let fox = |name| clip("data/gltf/Fox.glb", name);
+    if let (Some(walk), Some(run)) = (fox("Walk"), fox("Run")) {
+        pairs.push(("fox", walk, run));
+    }
+    let bvh = |name: &str| clips(&format!("data/bvh/{name}.bvh")).map(|clips| clips[0].clone());
+    if let (Some(walk), Some(dance)) = (bvh("cmu_02_01_walk"), bvh("cmu_05_06_dance")) {
+        pairs.push(("captures", walk, dance));
+    }
+    let biped = |name| clip("data/gltf/biped23_movement_clips.glb", name);
+    if let (Some(walk), Some(run)) = (biped("Walking_A"), biped("Running_A")) {
+        pairs.push(("biped", walk, run));
+    }
+    pairs
+        .into_iter()
+        .map(|(name, a, b)| {
+            let b = fit(&b, &a.skeleton).unwrap();
+            (name, a, b)
+        })
+        .collect()
+}
+
+/// A skeleton of one root with a limb, and a clip of it from turns and places of the root.
+fn one_root(turns: &[Rotor], places: &[DVec3]) -> Clip {
+    let joint = |name: &str, number, parent, place| Joint {
+        name: name.to_owned(),
+        number,
+        parent,
+        rest: Transform::from_translation(place),
+        kind: JointKind::Joint,
+        tips: vec![],
+    };
+    let skeleton = Skeleton::new(vec![
+        joint("root", 0, None, DVec3::ZERO),
+        joint("left", 1, Some(0), DVec3::new(0.3, 1.0, 0.1)),
+        joint("right", 2, Some(0), DVec3::new(-0.3, 0.8, 0.0)),
+    ])
+    .unwrap();
+    let times = Times::Even { step_secs: 1.0 / 30.0, count: turns.len() };
+    let root = JointTracks {
+        rotation: Some(RotationTrack::from_rotors(times.clone(), turns.to_vec())),
+        translation: Some(VectorTrack::straight(times.clone(), places.to_vec())),
+        scale: None,
+    };
+    Clip {
+        name: "one".to_owned(),
+        skeleton: Arc::new(skeleton),
+        joints: vec![Arc::new(root), Arc::default(), Arc::default()],
+        duration_secs: times.at(turns.len() - 1),
+        grid: FrameGrid { times, rate: 30.0 },
+    }
+}
+
+fn rotor(json: &serde_json::Value) -> Rotor {
+    let [x, y, z, w] = numbers::<4>(json);
+    Rotor::from_xyzw([x, y, z, w])
+}
+
+#[test]
+fn worked_examples_of_slerp_layers_and_means() {
+    // reference/method_checks.json, computed with scipy: `slerp_nlerp`, `additive`, `weighted_mean`.
+    let Some(checks) = shared_json("reference/method_checks.json") else { return };
+    let still = |turn: Rotor| one_root(&[turn; 2], &[DVec3::ZERO; 2]);
+    let mask = Mask::all(&still(Rotor::IDENTITY).skeleton);
+    let turn = |clip: &Clip| clip.rotation(0).unwrap().at(0.0);
+
+    let q0 = Rotor::from_plane_angles(
+        Bivector::from_axis(DVec3::new(1.0, 2.0, 3.0).normalize()) * 20_f64.to_radians(),
+    );
+    let q1 = Rotor::from_plane_angles(
+        Bivector::from_axis(DVec3::new(-1.0, 0.5, 2.0).normalize()) * 140_f64.to_radians(),
+    );
+    let quarter = mix(&still(q0), &still(q1), &MixAlong::constant(0.25), &mask).unwrap();
+    let expected =
+        Rotor::from_xyzw([-0.086_824_845_208, 0.139_091_777_710, 0.365_008_400_627, 0.916_451_739_646]);
+    assert_close!(turn(&quarter), expected, 2e-12);
+
+    let case = &checks["additive"];
+    let [reference, layer, base] = ["ref", "clip", "base"].map(|name| rotor(&case[name]));
+    let moving = one_root(&[reference, layer], &[DVec3::ZERO; 2]);
+    for (side, name) in [(Side::Body, "body_result"), (Side::Parent, "parent_result")] {
+        let laid = add(&still(base), &moving, 0.5, Reference::First, side, &mask).unwrap();
+        assert_close!(laid.rotation(0).unwrap().keys[1], rotor(&case[name]), 1e-12);
+        assert_eq!(laid.rotation(0).unwrap().keys[0], base);
+    }
+
+    let case = &checks["weighted_mean"];
+    let turns: Vec<Rotor> = case["quats"].as_array().unwrap().iter().map(rotor).collect();
+    let weights = numbers::<3>(&case["weights"]);
+    let stills: Vec<Clip> = turns.iter().map(|&turn| still(turn)).collect();
+    let weighted: Vec<(&Clip, f64)> = stills.iter().zip(weights).collect();
+    assert_close!(turn(&mix_many(&weighted).unwrap()), rotor(&case["karcher_mean"]), 1e-12);
+}
+
+#[test]
+fn weights_at_their_ends_give_the_clips_themselves() {
+    for (name, a, b) in pairs() {
+        let mask = Mask::all(&a.skeleton);
+        let none = mix(&a, &b, &MixAlong::constant(0.0), &mask).unwrap();
+        let both = mix(&a, &a, &MixAlong::constant(0.4), &mask).unwrap();
+        assert_eq!(both.joints, a.joints, "{name}: a clip with itself");
+        assert_eq!(add(&a, &b, 0.0, Reference::First, Side::Body, &mask).unwrap().joints, a.joints, "{name}");
+        let full = mix(&a, &b, &MixAlong::constant(1.0), &mask).unwrap();
+        let [half, other] =
+            [(&a, &b), (&b, &a)].map(|(a, b)| mix(a, b, &MixAlong::constant(0.3), &mask).unwrap());
+        let seven = mix(&b, &a, &MixAlong::constant(0.7), &mask).unwrap();
+        for joint in 0..a.joints.len() {
+            let bits = none.rotation(joint).zip(a.rotation(joint));
+            if let Some((own, first)) = bits {
+                let count = own.keys.len().min(first.keys.len());
+                // A cut glTF clip ends with a key of its own.
+                assert_eq!(own.keys[..count - 1], first.keys[..count - 1], "{name} {joint}");
+            }
+            // The last frame of a glTF clip lies a rounding beyond its end.
+            let end = a.duration_secs.min(b.duration_secs) - 1e-6;
+            for secs in full.grid.times.iter().filter(|&secs| secs < end) {
+                let turns = |clip: &Clip| clip.rotations_at(joint, &[secs])[0];
+                assert_close!(turns(&full), turns(&b), 1e-11, "{name} {joint} at {secs}");
+                if name != "fox" && a.grid.rate == b.grid.rate {
+                    assert_close!(turns(&half), turns(&seven), 1e-11, "{name} {joint} at {secs}");
+                }
+                let way = turns(&a).turn_to(turns(&b));
+                assert_close!(turns(&a).turn_to(turns(&half)), 0.3 * way, 1e-9, "{name} {joint} at {secs}");
+                assert_close!(turns(&b).turn_to(turns(&other)), 0.3 * way, 1e-9, "{name} {joint} at {secs}");
+            }
+        }
+    }
+}
+
+#[test]
+fn an_aligned_mix_ends_in_both_clips() {
+    for (name, a, b) in pairs() {
+        let along = match align(&a, &b) {
+            Ok(along) => along,
+            Err(error) => panic!("{name}: {error}"),
+        };
+        for secs in [&along.first_secs, &along.second_secs] {
+            assert!(secs.windows(2).all(|pair| pair[0] < pair[1]), "{name}: strictly rising {secs:?}");
+        }
+        let mask = Mask::all(&a.skeleton);
+        let at =
+            |weight| mix_aligned(&a, &b, &along, &MixAlong::constant(weight), &mask, RootFrom::Both).unwrap();
+        assert_eq!(at(0.0), *a, "{name}");
+        let (half, full) = (at(0.5), at(1.0));
+        let between = f64::midpoint(a.duration_secs, b.duration_secs);
+        assert!((half.duration_secs - between).abs() < 1.0 / a.grid.rate, "{name}: {}", half.duration_secs);
+        assert!((full.duration_secs - b.duration_secs).abs() < 1.0 / a.grid.rate, "{name}");
+        // With the full weight it is the second clip, set down elsewhere: turns below the root are the same, and the root
+        // moves as there.
+        let secs: Vec<f64> = full.grid.times.iter().collect();
+        let (own, other) = (full.worlds_at(&secs), b.worlds_at(&secs));
+        let size = (0..a.skeleton.len())
+            .map(|joint| own.position(joint, 0).distance(own.position(0, 0)))
+            .fold(0.0, f64::max);
+        let ends = [0, secs.len() - 1];
+        let top = a.skeleton.listed().next().unwrap();
+        for joint in a.skeleton.listed() {
+            for (frame, _) in secs.iter().enumerate() {
+                let relative = |worlds: &turnwright::clip::Worlds| {
+                    worlds.position(joint, frame).distance(worlds.position(top, frame))
+                };
+                assert!(
+                    (relative(&own) - relative(&other)).abs() < 1e-9 * size.max(1.0),
+                    "{name} {joint} {frame}"
+                );
+            }
+            let path = |worlds: &turnwright::clip::Worlds| {
+                worlds.position(joint, ends[0]).distance(worlds.position(joint, ends[1]))
+            };
+            assert!(
+                (path(&own) - path(&other)).abs() < 1e-6 * size.max(1.0),
+                "{name} {joint}: {} {}",
+                path(&own),
+                path(&other)
+            );
+        }
+    }
+}
+
+#[test]
+fn a_clip_and_its_own_slowed_copy_are_aligned() {
+    let Some(fox) = clip("data/gltf/Fox.glb", "Walk") else { return };
+    // The same motion on a bent clock: at share s of its length the copy shows s + 0.08·sin 2πs.
+    let count = fox.grid.count();
+    let bent = |share: f64| share + 0.08 * (std::f64::consts::TAU * share).sin();
+    let secs: Vec<f64> =
+        (0..2 * count).map(|i| fox.duration_secs * bent(i as f64 / (2 * count - 1) as f64)).collect();
+    let times = Times::Even { step_secs: fox.duration_secs / (count - 1) as f64, count: 2 * count };
+    let joints = (0..fox.joints.len()).map(|joint| {
+        let tracks = &fox.joints[joint];
+        let rotation = tracks
+            .rotation
+            .as_ref()
+            .map(|track| RotationTrack::from_rotors(times.clone(), track.at_all(&secs)));
+        let translation = tracks.translation.as_ref().map(|track| {
+            VectorTrack::straight(
+                times.clone(),
+                secs.iter().map(|&t| track.at(t).unwrap()).collect::<Vec<_>>(),
+            )
+        });
+        Arc::new(JointTracks { rotation, translation, scale: None })
+    });
+    let joints = joints.collect();
+    let slowed = Clip {
+        joints,
+        duration_secs: times.at(2 * count - 1),
+        grid: FrameGrid { times, rate: fox.grid.rate },
+        ..(*fox).clone()
+    };
+    // Turned and set down elsewhere: that must not matter.
+    let slowed = moved(&slowed, GroundMove { turn_rad: 2.0, x: 300.0, z: -120.0 });
+    let along = align(&fox, &slowed).unwrap();
+    let worst = largest((0..=40).map(|step| {
+        let stop = along.at(f64::from(step) / 40.0);
+        let meant = fox.duration_secs * bent(stop.second_secs / slowed.duration_secs);
+        (stop.first_secs - meant).abs()
+    }));
+    assert!(worst < 1.5 / fox.grid.rate, "off by {worst} s");
+    let wrapped =
+        |turn: f64| (turn + std::f64::consts::PI).rem_euclid(std::f64::consts::TAU) - std::f64::consts::PI;
+    let turn = largest(along.turns_rad.iter().map(|&turn| wrapped(turn + 2.0).abs()));
+    assert!(turn < 0.02, "{turn}");
+}
+
+#[test]
+fn a_join_has_both_clips_and_no_jump() {
+    for (name, a, b) in pairs() {
+        let overlap = (0.4 * a.duration_secs.min(b.duration_secs)).min(0.5);
+        let mask = Mask::all(&a.skeleton);
+        let joined = join(&a, &b, JoinPlace::end_to_start(&a, overlap), &mask).unwrap();
+        let length = a.duration_secs + b.duration_secs - overlap;
+        assert!((joined.duration_secs - length).abs() < 1.0 / a.grid.rate, "{name}");
+        let start = a.duration_secs - overlap;
+        let frames: Vec<f64> = joined.grid.times.iter().collect();
+        for joint in 0..a.joints.len() {
+            for &secs in &frames {
+                let turns = |clip: &Clip, secs| clip.rotations_at(joint, &[secs])[0];
+                if secs < start {
+                    assert_close!(turns(&joined, secs), turns(&a, secs), 1e-12, "{name} {joint} at {secs}");
+                } else if secs > start + overlap && a.skeleton.parent_joint(joint).is_some() {
+                    assert_close!(
+                        turns(&joined, secs),
+                        turns(&b, secs - start),
+                        1e-12,
+                        "{name} {joint} at {secs}"
+                    );
+                }
+            }
+        }
+        // Nothing moves faster than the faster of both, but for what the two are apart over the overlap.
+        let fastest = |clip: &Clip| {
+            let secs: Vec<f64> = clip.grid.times.iter().collect();
+            let worlds = clip.worlds_at(&secs);
+            largest(clip.skeleton.listed().flat_map(|joint| {
+                let (worlds, secs) = (&worlds, &secs);
+                (1..secs.len()).map(move |i| {
+                    worlds.position(joint, i).distance(worlds.position(joint, i - 1))
+                        / (secs[i] - secs[i - 1])
+                })
+            }))
+        };
+        let size =
+            largest(a.skeleton.world(&a.skeleton.rest_pose()).iter().map(|joint| joint.position().length()));
+        let most = fastest(&a).max(fastest(&b)) + 1.5 * size / overlap;
+        assert!(fastest(&joined) < most, "{name}: {} against {most}", fastest(&joined));
+    }
+}
+
+#[test]
+fn a_clip_cut_in_two_is_joined_to_what_it_was() {
+    let Some(walk) = clips("data/bvh/cmu_02_01_walk.bvh").map(|clips| clips[0].clone()) else { return };
+    let step = walk.grid.times.at(1);
+    let first = turnwright::clip::cut(&walk, 0.0, 220.0 * step);
+    let second = turnwright::clip::cut(&walk, 160.0 * step, walk.duration_secs);
+    let second = moved(&second, GroundMove { turn_rad: -1.2, x: 40.0, z: 15.0 });
+    let joined =
+        join(&first, &second, JoinPlace::end_to_start(&first, 60.0 * step), &Mask::all(&walk.skeleton))
+            .unwrap();
+    assert_eq!(joined.grid.count(), walk.grid.count());
+    for frame in 0..walk.grid.count() {
+        let (own, other) = (joined.world_at(joined.grid.time(frame)), walk.world_at(walk.grid.time(frame)));
+        for (own, other) in own.iter().zip(&other) {
+            assert_close!(own.position(), other.position(), 1e-8, "frame {frame}");
+            assert_close!(own.rotation, other.rotation, 1e-9, "frame {frame}");
+        }
+    }
+    // And the best place for the join is found where the cut was.
+    let picture = join_distances(&first, &second, 60.0 * step, 400).unwrap();
+    let (place, distance) = blend::best_places(&picture, 60.0 * step, 5)[0];
+    assert!((place.first_secs - place.second_secs - 160.0 * step).abs() < 1.5 * step, "{place:?}");
+    assert!(distance < 0.05, "{distance}");
+}
+
+#[test]
+fn masks_leave_the_rest_alone() {
+    let Some((_, a, b)) = pairs().into_iter().find(|(name, ..)| *name == "captures") else { return };
+    let mask = Mask::joints(&a.skeleton, &["LeftArm", "LeftForeArm"]).unwrap();
+    for made in [
+        mix(&a, &b, &MixAlong::constant(0.6), &mask).unwrap(),
+        add(&a, &b, 0.6, Reference::First, Side::Body, &mask).unwrap(),
+    ] {
+        for joint in a.skeleton.listed() {
+            let is_meant = ["LeftArm", "LeftForeArm"].contains(&a.skeleton.label(joint));
+            assert_eq!(!is_meant, made.same_joint(&a, joint), "{}", a.skeleton.label(joint));
+        }
+    }
+    let error = Mask::joints(&a.skeleton, &["Tail"]).unwrap_err();
+    assert_eq!(error, BlendError::NoSuchJoint("Tail".to_owned()));
+    let limb = Mask::limb(&a.skeleton, "LeftArm", 2).unwrap();
+    let factor = |label: &str| limb.of(a.skeleton.find(label).unwrap());
+    assert_eq!(
+        (factor("LeftHand"), factor("LeftArm"), factor("RightArm"), factor("Hips")),
+        (1.0, 1.0, 0.0, 0.0)
+    );
+    assert!(0.0 < factor("Spine1") && factor("Spine1") < factor("LeftShoulder"), "{limb:?}");
+}
+
+#[test]
+fn bodies_that_are_not_one_are_told() {
+    let (Some(fox), Some(walk)) = (clip("data/gltf/Fox.glb", "Walk"), clips("data/bvh/walk01.bvh")) else {
+        return;
+    };
+    let error = fit(&walk[0], &fox.skeleton).unwrap_err();
+    assert!(error.to_string().contains("retarget"), "{error}");
+    let error = join(&fox, &fox, JoinPlace::end_to_start(&fox, 30.0), &Mask::all(&fox.skeleton)).unwrap_err();
+    assert!(matches!(error, BlendError::Overlap { .. }), "{error}");
+}
+
+#[test]
+fn a_move_on_the_ground_moves_every_joint_alike() {
+    for path in [
+        "data/gltf/wolf.glb",
+        "data/gltf/RiggedFigure.glb",
+        "data/gltf/biped23_movement_clips.glb",
+        "data/bvh/mixed_order_6ch.bvh",
+    ] {
+        let Some(all) = clips(path) else { return };
+        let clip = &all[0];
+        let place = GroundMove { turn_rad: 0.7, x: 3.0, z: -2.0 };
+        let after = moved(clip, place);
+        let secs = [0.0, 0.3 * clip.duration_secs, clip.duration_secs];
+        let (own, other) = (after.worlds_at(&secs), clip.worlds_at(&secs));
+        for joint in clip.skeleton.listed() {
+            for frame in 0..3 {
+                let expected = place.apply(other.position(joint, frame));
+                let size = 1.0 + expected.length();
+                assert_close!(own.position(joint, frame), expected, 1e-9 * size, "{path} {joint}");
+                assert_close!(
+                    own.rotation(joint, frame),
+                    Axis::Y.rotor(0.7) * other.rotation(joint, frame),
+                    1e-9,
+                    "{path} {joint}"
+                );
+            }
+        }
+    }
+}
