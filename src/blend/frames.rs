@@ -74,7 +74,7 @@ pub(super) fn tracks(first: &JointTracks, times: &Times, row: Row, kept: Kept<'_
         })
     };
     JointTracks {
-        rotation: row.rotations.map(|keys| rotation(first.rotation.as_ref(), times, keys, kept)),
+        rotation: row.rotations.map(|keys| rotation(first.rotation.as_ref(), times, &keys, kept)),
         translation: vectors(row.translations, first.translation.as_ref()),
         scale: vectors(row.scales, first.scale.as_ref()),
     }
@@ -88,7 +88,7 @@ fn keep<T: Copy>(keys: &mut [T], from: &[T], kept: Kept<'_>) {
     }
 }
 
-fn rotation(like: Option<&RotationTrack>, times: &Times, keys: Vec<Rotor>, kept: Kept<'_>) -> RotationTrack {
+fn rotation(like: Option<&RotationTrack>, times: &Times, keys: &[Rotor], kept: Kept<'_>) -> RotationTrack {
     let mut last = keys.first().copied().unwrap_or(Rotor::IDENTITY);
     let mut aligned: Vec<Rotor> = Vec::with_capacity(keys.len());
     for (frame, key) in keys.iter().enumerate() {
@@ -101,7 +101,7 @@ fn rotation(like: Option<&RotationTrack>, times: &Times, keys: Vec<Rotor>, kept:
     }
     let stored = match like.map(|track| &track.stored) {
         Some(Stored::Angles(angles)) => {
-            Stored::Angles(FileAngles { degrees: angles_of(angles, &keys, kept).into(), ..angles.clone() })
+            Stored::Angles(FileAngles { degrees: angles_of(angles, keys, kept).into(), ..angles.clone() })
         }
         Some(Stored::PlaneAngles(degrees)) => {
             let mut own: Vec<[f64; 3]> = keys.iter().map(|key| key.plane_angles().to_degrees()).collect();

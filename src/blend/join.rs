@@ -11,6 +11,9 @@ use super::mask::smooth_step;
 use super::mix::{between, lines, said, set_down};
 use super::{BlendError, Mask};
 
+/// Frames looked at in each window of a distance picture: few tell it apart.
+const SAMPLES: usize = 5;
+
 /// Where one clip is joined to another.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct JoinPlace {
@@ -139,8 +142,6 @@ pub fn join_distances(
     frames::check_frames(b)?;
     JoinPlace { first_secs: 0.0, second_secs: 0.0, overlap_secs }.check(a, b)?;
     let landmarks = Landmarks::of(a);
-    // Few samples tell a window apart; more frames than rows are not looked at.
-    const SAMPLES: usize = 5;
     let grid = |clip: &Clip| -> Vec<f64> {
         let span = (clip.duration_secs - overlap_secs).max(0.0);
         let count = ((span * a.grid.rate).round() as usize + 1).clamp(1, most.max(2));

@@ -7,6 +7,7 @@ use glam::DVec3;
 use crate::clip::{self, Clip, Times};
 use crate::rotor::{Rotor, geodesic_mean, slerp};
 
+use super::feet::{self, Origins};
 use super::frames::{self, Row, SLACK};
 use super::ground::{GroundMove, frame_above, tops};
 use super::registration::Registration;
@@ -147,6 +148,19 @@ pub(super) fn lines(a: &[DVec3], b: &[DVec3], share: &dyn Fn(usize) -> f64) -> V
     a.iter().zip(b).enumerate().map(one).collect()
 }
 
+/// How two clips are mixed in step.
+#[derive(Clone, Debug, PartialEq)]
+pub struct AlignedMix {
+    /// The second clip's weight over the first's time.
+    pub weight: MixAlong,
+    /// Factors for joints.
+    pub mask: Mask,
+    /// Whose way over the ground is taken.
+    pub root: RootFrom,
+    /// Whether feet that stand in both clips, or in the weightier one, are held where they stand in the mix.
+    pub holds_feet: bool,
+}
+
 /// `a` and `b` mixed with their steps in time: both are sampled where `along` says that they belong together, `b` is turned to
 /// `a`'s heading there, and the paces blend too, so the mix of a walk and a run of different lengths has a length between.
 ///
@@ -155,17 +169,11 @@ pub(super) fn lines(a: &[DVec3], b: &[DVec3], share: &dyn Fn(usize) -> f64) -> V
 ///
 /// # Errors
 /// When a weight is not within 0 and 1 or a clip has no frames.
-pub fn mix_aligned(
-    a: &Clip,
-    b: &Clip,
-    along: &Registration,
-    weight: &MixAlong,
-    mask: &Mask,
-    root: RootFrom,
-) -> Result<Clip, BlendError> {
-    weight.check()?;
+pub fn mix_aligned(a: &Clip, b: &Clip, along: &Registration, how: &AlignedMix) -> Result<Clip, BlendError> {
     frames::check_frames(a)?;
     frames::check_frames(b)?;
+    let AlignedMix { weight, mask, root, holds_feet } = how;
+    weight.check()?;
     if weight.only() == Some(0.0) {
         return Ok(a.clone());
     }
@@ -217,7 +225,10 @@ pub fn mix_aligned(
         Arc::new(frames::tracks(&a.joints[joint], &times, row, &|_| None))
     });
     let joints = joints.collect();
-    Ok(frames::clip_of(a, times.clone(), joints))
+    let mixed = frames::clip_of(a, times.clone(), joints);
+    let origins = Origins { first_secs: &own_secs, second_secs: &other_secs, weights: &weights };
+    let held = holds_feet.then(|| feet::held(&mixed, a, b, &origins)).flatten();
+    Ok(held.map_or(mixed, |(held, _)| held))
 }
 
 /// A top joint's local turn and place after a move of the scene.

@@ -6,6 +6,7 @@
 mod add;
 mod cloud;
 mod error;
+mod feet;
 mod fit;
 mod frames;
 mod ground;
@@ -22,6 +23,6 @@ pub use fit::fit;
 pub use ground::{GroundMove, moved};
 pub use join::{JoinPlace, best_places, join, join_distances};
 pub use mask::Mask;
-pub use mix::{MixAlong, RootFrom, mix, mix_aligned, mix_many};
+pub use mix::{AlignedMix, MixAlong, RootFrom, mix, mix_aligned, mix_many};
 pub use registration::{Registration, align};
 pub use warp::{WarpPath, time_warp};

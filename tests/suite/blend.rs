@@ -2,16 +2,21 @@
 
 #![expect(clippy::unwrap_used, reason = "the helpers of a test fail as the test does")]
 
+use std::path::Path;
 use std::sync::Arc;
 
 use glam::DVec3;
 use turnwright::blend::{
-    self, BlendError, GroundMove, JoinPlace, Mask, MixAlong, Reference, RootFrom, Side, add, align, fit,
-    join, join_distances, mix, mix_aligned, mix_many, moved,
+    self, AlignedMix, BlendError, GroundMove, JoinPlace, Mask, MixAlong, Reference, RootFrom, Side, add,
+    align, fit, join, join_distances, mix, mix_aligned, mix_many, moved,
 };
-use turnwright::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
-use turnwright::exchange::{self, OpenOptions};
+use turnwright::clip::{
+    Clip, ContactOptions, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack, contacts, slides,
+    standing_feet,
+};
+use turnwright::exchange::{self, OpenOptions, ron};
 use turnwright::rotor::{Axis, Bivector, Rotor};
+use turnwright::scene::{BlendForm, BlendPass, ClipRef, ClipWork, Document, Pass, PassId, SourceRef};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use crate::support::{assert_close, largest, numbers, shared, shared_json};
@@ -129,8 +134,9 @@ fn weights_at_their_ends_give_the_clips_themselves() {
         assert_eq!(both.joints, a.joints, "{name}: a clip with itself");
         assert_eq!(add(&a, &b, 0.0, Reference::First, Side::Body, &mask).unwrap().joints, a.joints, "{name}");
         let full = mix(&a, &b, &MixAlong::constant(1.0), &mask).unwrap();
-        let [half, other] =
-            [(&a, &b), (&b, &a)].map(|(a, b)| mix(a, b, &MixAlong::constant(0.3), &mask).unwrap());
+        let half = mix(&a, &b, &MixAlong::constant(0.3), &mask).unwrap();
+        let other = mix(&b, &a, &MixAlong::constant(0.3), &mask).unwrap();
+        let same_frames = a.grid.times.at(1) == b.grid.times.at(1);
         let seven = mix(&b, &a, &MixAlong::constant(0.7), &mask).unwrap();
         for joint in 0..a.joints.len() {
             let bits = none.rotation(joint).zip(a.rotation(joint));
@@ -144,11 +150,15 @@ fn weights_at_their_ends_give_the_clips_themselves() {
             for secs in full.grid.times.iter().filter(|&secs| secs < end) {
                 let turns = |clip: &Clip| clip.rotations_at(joint, &[secs])[0];
                 assert_close!(turns(&full), turns(&b), 1e-11, "{name} {joint} at {secs}");
-                if name != "fox" && a.grid.rate == b.grid.rate {
+                if same_frames {
                     assert_close!(turns(&half), turns(&seven), 1e-11, "{name} {joint} at {secs}");
                 }
                 let way = turns(&a).turn_to(turns(&b));
                 assert_close!(turns(&a).turn_to(turns(&half)), 0.3 * way, 1e-9, "{name} {joint} at {secs}");
+            }
+            for secs in other.grid.times.iter().filter(|&secs| secs < end) {
+                let turns = |clip: &Clip| clip.rotations_at(joint, &[secs])[0];
+                let way = turns(&a).turn_to(turns(&b));
                 assert_close!(turns(&b).turn_to(turns(&other)), 0.3 * way, 1e-9, "{name} {joint} at {secs}");
             }
         }
@@ -166,8 +176,11 @@ fn an_aligned_mix_ends_in_both_clips() {
             assert!(secs.windows(2).all(|pair| pair[0] < pair[1]), "{name}: strictly rising {secs:?}");
         }
         let mask = Mask::all(&a.skeleton);
-        let at =
-            |weight| mix_aligned(&a, &b, &along, &MixAlong::constant(weight), &mask, RootFrom::Both).unwrap();
+        let at = |weight| {
+            let weight = MixAlong::constant(weight);
+            let how = AlignedMix { weight, mask: mask.clone(), root: RootFrom::Both, holds_feet: true };
+            mix_aligned(&a, &b, &along, &how).unwrap()
+        };
         assert_eq!(at(0.0), *a, "{name}");
         let (half, full) = (at(0.5), at(1.0));
         let between = f64::midpoint(a.duration_secs, b.duration_secs);
@@ -382,4 +395,56 @@ fn a_move_on_the_ground_moves_every_joint_alike() {
             }
         }
     }
+}
+
+/// The largest speed of any planted point of a foot along the ground in its contacts, in leg lengths a second.
+fn fastest_slide(clip: &Clip) -> f64 {
+    let options = ContactOptions::default();
+    let feet = standing_feet(clip, options.up);
+    let found = contacts(clip, &feet, &options);
+    let rows = slides(clip, &feet, &found.spans, options.up);
+    largest(rows.iter().map(|slide| slide.fastest)) / found.leg
+}
+
+#[test]
+fn planted_feet_stay_planted_in_a_mix() {
+    for (name, a, b) in pairs() {
+        let along = align(&a, &b).unwrap();
+        let how = AlignedMix {
+            weight: MixAlong::constant(0.5),
+            mask: Mask::all(&a.skeleton),
+            root: RootFrom::Both,
+            holds_feet: true,
+        };
+        let mixed = mix_aligned(&a, &b, &along, &how).unwrap();
+        let most = fastest_slide(&a).max(fastest_slide(&b));
+        let found = fastest_slide(&mixed);
+        assert!(found <= 1.05 * most, "{name}: {found} leg lengths a second, in the clips {most}");
+    }
+}
+
+#[test]
+fn a_scene_keeps_a_blend() {
+    let label = |_: usize, _: usize, joint: usize| format!("joint{joint}");
+    let forms = [
+        BlendForm::Join(JoinPlace { first_secs: 1.5, second_secs: 0.25, overlap_secs: 0.5 }),
+        BlendForm::Mix {
+            weight: MixAlong { knots: vec![[0.0, 0.0], [1.0, 0.75], [2.0, 1.0]] },
+            is_aligned: true,
+            root: RootFrom::First,
+        },
+        BlendForm::Add { weight: -1.5, reference: Reference::Mean, side: Side::Parent },
+    ];
+    let mut document = Document::default();
+    document.sources.push(SourceRef { path: "/a/walk.bvh".into(), sha256: "0".repeat(64) });
+    document.works.push(ClipWork::new(0, 0, "walk"));
+    for (id, form) in forms.into_iter().enumerate() {
+        let other = ClipRef { source: 0, clip: id };
+        let joints = (id == 1).then(|| vec![(2, 0.5), (3, 1.0)]);
+        let step = BlendPass { other, form, joints, holds_feet: id == 1 }.into();
+        document.works[0].passes.push(Pass { id: PassId(id as u64), on: true, step });
+    }
+    let text = ron::to_text(Path::new("/a/night.ron"), &document, &label).unwrap();
+    let back = ron::from_text(Path::new("/a/night.ron"), &text).unwrap().document;
+    assert_eq!(back.works[0].passes, document.works[0].passes, "{text}");
 }

@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use crate::blend::{self, BlendError, JoinPlace, Mask, MixAlong, RootFrom};
+use crate::blend::{self, AlignedMix, BlendError, JoinPlace, Mask, MixAlong, RootFrom};
 use crate::cli::DONE;
 use crate::cli::args::BlendArgs;
 use crate::cli::error::CliError;
@@ -60,7 +60,8 @@ fn blended(args: &BlendArgs, a: &Arc<Clip>, b: &Arc<Clip>) -> Result<Arc<Clip>, 
         let weight = MixAlong::constant(args.mix.unwrap_or_default());
         if args.align {
             let along = blend::align(a, &b)?;
-            blend::mix_aligned(a, &b, &along, &weight, &mask, RootFrom::Both)?
+            let how = AlignedMix { weight, mask, root: RootFrom::Both, holds_feet: true };
+            blend::mix_aligned(a, &b, &along, &how)?
         } else {
             blend::mix(a, &b, &weight, &mask)?
         }

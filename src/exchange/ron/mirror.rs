@@ -56,6 +56,61 @@ pub(super) struct Pass {
 pub(super) enum Step {
     Mend { kind: String, amount: f64, snags: Vec<Snag> },
     Resample { rate: f64 },
+    Blend(Blend),
+}
+
+/// Another clip blended in.
+#[derive(Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct Blend {
+    /// Index of its source, and of the clip in it.
+    pub(super) other: (usize, usize),
+    pub(super) form: BlendForm,
+    /// Factor of each joint by number; all in full without.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) joints: Option<Vec<(usize, f64)>>,
+    pub(super) holds_feet: bool,
+}
+
+#[derive(Serialize, Deserialize)]
+pub(super) enum BlendForm {
+    /// Seconds in this clip and in the other at which the overlap begins, and how long it is.
+    Join {
+        first: f64,
+        second: f64,
+        overlap: f64,
+    },
+    Mix {
+        /// Seconds and weight of each knot.
+        weight: Vec<(f64, f64)>,
+        aligned: bool,
+        root: RootFrom,
+    },
+    Add {
+        weight: f64,
+        reference: Reference,
+        side: Side,
+    },
+}
+
+#[derive(Serialize, Deserialize)]
+pub(super) enum RootFrom {
+    Both,
+    First,
+    Second,
+}
+
+#[derive(Serialize, Deserialize)]
+pub(super) enum Reference {
+    First,
+    Rest,
+    Mean,
+}
+
+#[derive(Serialize, Deserialize)]
+pub(super) enum Side {
+    Body,
+    Parent,
 }
 
 impl Step {

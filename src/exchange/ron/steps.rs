@@ -1,7 +1,8 @@
 //! Passes between the document and the file: one pair of arms for each kind.
 
+use crate::blend::{JoinPlace, MixAlong, Reference, RootFrom, Side};
 use crate::rotor::Rotor;
-use crate::scene::{MendPass, PassStep, ResamplePass};
+use crate::scene::{BlendForm, BlendPass, ClipRef, MendPass, PassStep, ResamplePass};
 use crate::snag::{Remedy, Snag, SnagKind};
 
 use super::mirror;
@@ -16,6 +17,7 @@ pub(super) fn step_from(step: mirror::Step) -> Result<PassStep, String> {
             MendPass { kind, snags, amount }.into()
         }
         mirror::Step::Resample { rate } => ResamplePass { rate }.into(),
+        mirror::Step::Blend(blend) => blend_from(blend).into(),
     })
 }
 
@@ -28,7 +30,72 @@ pub(super) fn step_to(step: &PassStep, label: &dyn Fn(usize) -> String) -> mirro
             snags: mend.snags.iter().map(|snag| snag_to(snag, label(snag.joint))).collect(),
         },
         PassStep::Resample(pass) => mirror::Step::Resample { rate: pass.rate },
+        PassStep::Blend(pass) => mirror::Step::Blend(blend_to(pass)),
     }
+}
+
+fn blend_from(blend: mirror::Blend) -> BlendPass {
+    let (source, clip) = blend.other;
+    let form = match blend.form {
+        mirror::BlendForm::Join { first, second, overlap } => {
+            BlendForm::Join(JoinPlace { first_secs: first, second_secs: second, overlap_secs: overlap })
+        }
+        mirror::BlendForm::Mix { weight, aligned, root } => BlendForm::Mix {
+            weight: MixAlong { knots: weight.into_iter().map(|(secs, weight)| [secs, weight]).collect() },
+            is_aligned: aligned,
+            root: match root {
+                mirror::RootFrom::Both => RootFrom::Both,
+                mirror::RootFrom::First => RootFrom::First,
+                mirror::RootFrom::Second => RootFrom::Second,
+            },
+        },
+        mirror::BlendForm::Add { weight, reference, side } => BlendForm::Add {
+            weight,
+            reference: match reference {
+                mirror::Reference::First => Reference::First,
+                mirror::Reference::Rest => Reference::Rest,
+                mirror::Reference::Mean => Reference::Mean,
+            },
+            side: match side {
+                mirror::Side::Body => Side::Body,
+                mirror::Side::Parent => Side::Parent,
+            },
+        },
+    };
+    BlendPass { other: ClipRef { source, clip }, form, joints: blend.joints, holds_feet: blend.holds_feet }
+}
+
+fn blend_to(pass: &BlendPass) -> mirror::Blend {
+    let form = match &pass.form {
+        BlendForm::Join(place) => mirror::BlendForm::Join {
+            first: place.first_secs,
+            second: place.second_secs,
+            overlap: place.overlap_secs,
+        },
+        BlendForm::Mix { weight, is_aligned, root } => mirror::BlendForm::Mix {
+            weight: weight.knots.iter().map(|&[secs, weight]| (secs, weight)).collect(),
+            aligned: *is_aligned,
+            root: match root {
+                RootFrom::Both => mirror::RootFrom::Both,
+                RootFrom::First => mirror::RootFrom::First,
+                RootFrom::Second => mirror::RootFrom::Second,
+            },
+        },
+        BlendForm::Add { weight, reference, side } => mirror::BlendForm::Add {
+            weight: *weight,
+            reference: match reference {
+                Reference::First => mirror::Reference::First,
+                Reference::Rest => mirror::Reference::Rest,
+                Reference::Mean => mirror::Reference::Mean,
+            },
+            side: match side {
+                Side::Body => mirror::Side::Body,
+                Side::Parent => mirror::Side::Parent,
+            },
+        },
+    };
+    let other = (pass.other.source, pass.other.clip);
+    mirror::Blend { other, form, joints: pass.joints.clone(), holds_feet: pass.holds_feet }
 }
 
 fn amount_in_range(amount: f64) -> Result<(), String> {

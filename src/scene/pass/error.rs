@@ -1,5 +1,6 @@
 //! Why a pass could not be applied.
 
+use crate::blend::BlendError;
 use crate::mend::MendError;
 
 /// A pass that does not fit the clip it is to change. It is left out then.
@@ -8,6 +9,9 @@ pub enum PassError {
     /// A mend that does not fit.
     #[error(transparent)]
     Mend(#[from] MendError),
+    /// Two clips that can't be blended.
+    #[error(transparent)]
+    Blend(BlendError),
     /// A joint that the clip does not have.
     #[error("expected one of the clip's {count} joints, found number {joint}")]
     NoSuchJoint {

@@ -1,5 +1,6 @@
 //! Passes: the ordered, switchable steps from a source clip to the result. One file a kind.
 
+mod blend;
 mod error;
 mod kind;
 mod mend;
@@ -7,6 +8,7 @@ mod others;
 mod resample;
 mod scope;
 
+pub use blend::{BlendForm, BlendPass};
 pub use error::PassError;
 pub use kind::{Outcome, PassKind};
 pub use mend::{MendPass, SnagMark};
@@ -67,6 +69,8 @@ steps! {
     Mend(MendPass),
     /// Another rate.
     Resample(ResamplePass),
+    /// Another clip blended in.
+    Blend(BlendPass),
 }
 
 impl PassStep {
