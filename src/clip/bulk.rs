@@ -4,7 +4,8 @@ use crate::rotor::Rotor;
 use crate::rotor::batch::{self, Level, Parts, PartsMut, Streams};
 use crate::skeleton::LocalPose;
 
-use super::rotation_track::{PathKind, RotationTrack};
+use super::path::{PathKind, piece_of};
+use super::rotation_track::RotationTrack;
 use super::take::Clip;
 use super::times::Place;
 
@@ -35,8 +36,9 @@ impl RotationTrack {
         };
         let mut found = vec![Rotor::IDENTITY; times_secs.len()];
         let (mut slerps, mut squads) = (Queue::<2>::new(), Queue::<4>::new());
-        // The inner points of a segment are computed once for all times in it.
-        let mut squad_points: Option<(usize, [Rotor; 4])> = None;
+        // The inner points of a segment, or of a piece of one, are computed once for all times in it.
+        let mut squad_points: Option<((usize, usize), [Rotor; 4])> = None;
+        let mut solved = None;
         // The key before the last time.
         let mut near = 0;
         for (index, &secs) in times_secs.iter().enumerate() {
@@ -44,32 +46,48 @@ impl RotationTrack {
                 None => continue,
                 Some(Place::At(key)) => {
                     near = key;
-                    found[index] = sound(key);
+                    found[index] = self.smoothed_key(key, path).unwrap_or_else(|| sound(key));
                     continue;
                 }
                 Some(Place::Between(key, share)) => (key, share),
             };
             near = key;
-            match path.unwrap_or_else(|| self.paths.of(key)) {
-                PathKind::Hold => found[index] = sound(key),
-                PathKind::Cubic if self.tangents.is_some() => {
-                    found[index] = self.at_by(secs, Some(PathKind::Cubic));
+            let segment = self.segments.of(key);
+            let share = segment.spacing.pace(share).share;
+            let mut kind = self.kind_of(key, path);
+            if matches!(kind, PathKind::Spline | PathKind::BSpline) {
+                let solved = solved.get_or_insert_with(|| self.solved(path));
+                let (start, end) = (self.times.at(key), self.times.at(key + 1));
+                match solved.run(key).and_then(|run| run.at(start + (end - start) * share)) {
+                    Some(rotor) => found[index] = rotor,
+                    // No curve was found for the run.
+                    None => kind = PathKind::Squad,
                 }
-                PathKind::Slerp | PathKind::Cubic => {
+            }
+            match kind {
+                PathKind::Hold => found[index] = sound(key),
+                PathKind::Cubic => {
+                    found[index] = self.cubic_at(key, share).unwrap_or_else(|| sound(key));
+                }
+                PathKind::Slerp if segment.turn.is_short() => {
                     if slerps.push(index, [sound(key), sound(key + 1)], share) {
                         slerps.flush(&mut found);
                     }
                 }
+                PathKind::Slerp => found[index] = self.lead(key, &sound).at(share),
                 PathKind::Squad => {
+                    let pieces = if segment.turn.is_short() { 1 } else { self.lead(key, &sound).pieces };
+                    let (piece, local) = piece_of(share, pieces);
                     let points = match squad_points {
-                        Some((segment, points)) if segment == key => points,
-                        _ => self.squad_points(key, sound),
+                        Some((place, points)) if place == (key, piece) => points,
+                        _ => self.squad_points(key, piece, path, &sound),
                     };
-                    squad_points = Some((key, points));
-                    if squads.push(index, points, share) {
+                    squad_points = Some(((key, piece), points));
+                    if squads.push(index, points, local) {
                         squads.flush(&mut found);
                     }
                 }
+                PathKind::Spline | PathKind::BSpline => {}
             }
         }
         slerps.flush(&mut found);
@@ -205,7 +223,7 @@ fn parts(rotor: Rotor) -> [f64; 4] {
 
 #[cfg(test)]
 mod tests {
-    use super::super::rotation_track::Paths;
+    use super::super::path::Paths;
     use super::super::times::Times;
     use super::*;
     use crate::rotor::Bivector;

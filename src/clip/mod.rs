@@ -8,6 +8,7 @@ mod contact;
 mod continuity;
 mod feet;
 mod keys;
+mod path;
 mod resample;
 mod rotation_track;
 mod take;
@@ -24,7 +25,10 @@ pub use continuity::continuous_angles;
 pub use feet::standing_feet;
 pub use keys::Keys;
 pub use resample::{cut, resampled};
-pub use rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};
+pub use path::{
+    MeantTurn, Pace, PathError, PathKind, Paths, Peak, Segment, Segments, Spacing, SpacingError,
+};
+pub use rotation_track::{FileAngles, RotationTrack, Stored};
 pub use take::{Clip, FrameGrid, JointTracks};
 pub use times::{Place, Times};
 pub use vector_track::{VectorPath, VectorTrack};

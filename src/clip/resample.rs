@@ -8,8 +8,13 @@ use glam::DVec3;
 use crate::rotor::Rotor;
 
 use super::continuity::continuous_angles;
+<<<<<<< HEAD
 use super::keys::Keys;
 use super::rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};
+=======
+use super::path::{PathKind, Paths, Segments};
+use super::rotation_track::{FileAngles, RotationTrack, Stored};
+>>>>>>> 8161801 (Paths between keys: spline and B-spline runs, spacing, meant turns; rate and acceleration of every path)
 use super::take::{Clip, FrameGrid, JointTracks};
 use super::times::{Place, Times};
 use super::vector_track::{VectorPath, VectorTrack};
@@ -140,7 +145,14 @@ fn rotation_at(track: &RotationTrack, times: &Times, at: &[f64]) -> RotationTrac
             last
         })
         .collect();
-    RotationTrack { times: times.clone(), keys, paths, tangents: None, stored }
+    RotationTrack {
+        times: times.clone(),
+        keys,
+        paths,
+        tangents: None,
+        segments: Segments::default(),
+        stored,
+    }
 }
 
 fn vectors_at(track: &VectorTrack, times: &Times, at: &[f64]) -> Option<VectorTrack> {
@@ -204,7 +216,14 @@ impl Frames<'_> {
             Paths::Each(_) => Paths::Each(paths.into()),
         };
         let tangents = tangents.map(Into::into);
-        RotationTrack { times: times.times, keys: keys.into(), paths, tangents, stored: Stored::Rotors }
+        RotationTrack {
+            times: times.times,
+            keys: keys.into(),
+            paths,
+            tangents,
+            segments: Segments::default(),
+            stored: Stored::Rotors,
+        }
     }
 
     fn vectors(&self, track: &VectorTrack) -> Option<VectorTrack> {
@@ -280,6 +299,7 @@ fn sliced(track: &RotationTrack, span: RangeInclusive<usize>, times: Times) -> R
         keys: track.keys[span.clone()].into(),
         paths,
         tangents: track.tangents.as_ref().map(|all| all[span].into()),
+        segments: Segments::default(),
         stored,
     }
 }

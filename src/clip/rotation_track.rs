@@ -2,8 +2,9 @@
 
 use std::sync::Arc;
 
-use crate::rotor::{Axis, Bivector, EulerOrder, Rotor, parabola_rate, slerp, squad, squad_inner_uneven};
+use crate::rotor::{Axis, Bivector, EulerOrder, Rotor};
 
+<<<<<<< HEAD
 use super::keys::Keys;
 use super::times::{Place, Times};
 
@@ -38,6 +39,10 @@ impl Paths {
         }
     }
 }
+=======
+use super::path::{PathKind, Paths, Segments};
+use super::times::Times;
+>>>>>>> 8161801 (Paths between keys: spline and B-spline runs, spacing, meant turns; rate and acceleration of every path)
 
 /// The angles a file stores for a joint in place of a rotor.
 #[derive(Clone, Debug, PartialEq)]
@@ -81,6 +86,8 @@ pub struct RotationTrack {
     pub paths: Paths,
     /// In- and out-tangent of each key, per second, of the four numbers; for [`PathKind::Cubic`] alone.
     pub tangents: Option<Arc<[[Rotor; 2]]>>,
+    /// Spacing and meant turns of the segments, and what smooth paths do at the track's ends.
+    pub segments: Segments,
     /// The file's own form.
     pub stored: Stored,
 }
@@ -93,6 +100,7 @@ impl RotationTrack {
             keys: keys.into(),
             paths: Paths::Every(PathKind::Slerp),
             tangents: None,
+            segments: Segments::default(),
             stored: Stored::Rotors,
         }
     }
@@ -105,6 +113,7 @@ impl RotationTrack {
             keys: aligned(angles.degrees.iter().map(|&degrees| angles.rotor(degrees))),
             paths: Paths::Every(PathKind::Slerp),
             tangents: None,
+            segments: Segments::default(),
             stored: Stored::Angles(angles),
         }
     }
@@ -116,6 +125,7 @@ impl RotationTrack {
             keys: aligned(degrees.iter().map(|&d| Rotor::from_plane_angles(Bivector::from_degrees(d)))),
             paths: Paths::Every(PathKind::Slerp),
             tangents: None,
+            segments: Segments::default(),
             stored: Stored::PlaneAngles(degrees),
         }
     }
@@ -128,109 +138,12 @@ impl RotationTrack {
         }
     }
 
-    /// The orientation at `time_secs` as the file's own format plays it; unit. Before the first key and after the last
-    /// that key is held. A key that is not finite is stepped over: its sound neighbour is held. No turn without keys.
-    pub fn at(&self, time_secs: f64) -> Rotor {
-        self.at_by(time_secs, None)
-    }
-
-    /// As [`RotationTrack::at`], with `path` in place of the track's own path kinds where it is given.
-    pub fn at_by(&self, time_secs: f64, path: Option<PathKind>) -> Rotor {
-        match self.times.place(time_secs) {
-            None => Rotor::IDENTITY,
-            Some(Place::At(key)) => self.sound_key(key),
-            Some(Place::Between(key, share)) => {
-                self.between(key, share, path.unwrap_or_else(|| self.paths.of(key)))
-            }
-        }
-    }
-
     /// The unit rotor of a key; where it is not finite or zero, of the nearest sound key before it, else after it.
     pub fn sound_key(&self, key: usize) -> Rotor {
         let unit = |rotor: &Rotor| rotor.try_normalize();
         let before = || self.keys[..key].iter().rev().find_map(unit);
         let after = || self.keys[key..].iter().find_map(unit);
         unit(&self.keys[key]).or_else(before).or_else(after).unwrap_or(Rotor::IDENTITY)
-    }
-
-    fn between(&self, key: usize, share: f64, path: PathKind) -> Rotor {
-        let (a, b) = (self.sound_key(key), self.sound_key(key + 1));
-        match path {
-            PathKind::Hold => a,
-            PathKind::Slerp => slerp(a, b, share).normalize(),
-            PathKind::Squad => self.squad(key, share),
-            PathKind::Cubic => match &self.tangents {
-                Some(tangents) => self.cubic(tangents, key, share).try_normalize().unwrap_or(a),
-                None => slerp(a, b, share).normalize(),
-            },
-        }
-    }
-
-    /// glTF 2.0, appendix C.5: no sign is changed, and the result is not yet unit.
-    fn cubic(&self, tangents: &[[Rotor; 2]], key: usize, t: f64) -> Rotor {
-        let secs = self.times.at(key + 1) - self.times.at(key);
-        let (t2, t3) = (t * t, t * t * t);
-        let weighted = [
-            (self.keys[key], 2.0 * t3 - 3.0 * t2 + 1.0),
-            (tangents[key][1], secs * (t3 - 2.0 * t2 + t)),
-            (self.keys[key + 1], 3.0 * t2 - 2.0 * t3),
-            (tangents[key + 1][0], secs * (t3 - t2)),
-        ];
-        weighted.into_iter().fold(Rotor::new(0.0, 0.0, 0.0, 0.0), |sum, (rotor, weight)| {
-            Rotor::new(
-                sum.s + rotor.s * weight,
-                sum.yz + rotor.yz * weight,
-                sum.zx + rotor.zx * weight,
-                sum.xy + rotor.xy * weight,
-            )
-        })
-    }
-
-    /// The cubic's unit value at a share of a segment, and its rate per second in the four numbers, both by the same
-    /// factor: with them as a key the two halves run as the whole did, but for the length of the four numbers.
-    pub(super) fn cubic_cut(&self, key: usize, t: f64) -> (Rotor, Rotor) {
-        let Some(tangents) = &self.tangents else { return (self.at(self.times.at(key)), Rotor::IDENTITY) };
-        let secs = self.times.at(key + 1) - self.times.at(key);
-        let value = self.cubic(tangents, key, t);
-        let weighted = [
-            (self.keys[key], (6.0 * t * t - 6.0 * t) / secs),
-            (tangents[key][1], 3.0 * t * t - 4.0 * t + 1.0),
-            (self.keys[key + 1], (6.0 * t - 6.0 * t * t) / secs),
-            (tangents[key + 1][0], 3.0 * t * t - 2.0 * t),
-        ];
-        let factor = 1.0 / value.norm();
-        let rate = weighted.into_iter().fold(Rotor::new(0.0, 0.0, 0.0, 0.0), |sum, (rotor, weight)| {
-            let part = rotor.scale(weight * factor);
-            Rotor::new(sum.s + part.s, sum.yz + part.yz, sum.zx + part.zx, sum.xy + part.xy)
-        });
-        (value.scale(factor), rate)
-    }
-
-    fn squad(&self, key: usize, share: f64) -> Rotor {
-        let [a, inner_a, inner_b, b] = self.squad_points(key, |key| self.sound_key(key));
-        squad(a, inner_a, inner_b, b, share).normalize()
-    }
-
-    /// The four points of squad between two keys, with inner points from their four neighbours; at the ends the key is its own
-    /// inner point.
-    pub(super) fn squad_points(&self, key: usize, sound: impl Fn(usize) -> Rotor) -> [Rotor; 4] {
-        let last = self.keys.len() - 1;
-        let a = sound(key);
-        let b = sound(key + 1).aligned_to(a);
-        let secs = |from: usize| self.times.at(from + 1) - self.times.at(from);
-        let inner_a = if key == 0 {
-            a
-        } else {
-            let before = sound(key - 1).aligned_to(a);
-            inner_points(before, a, b, secs(key - 1), secs(key))[1]
-        };
-        let inner_b = if key + 1 == last {
-            b
-        } else {
-            let after = sound(key + 2).aligned_to(b);
-            inner_points(a, b, after, secs(key), secs(key + 1))[0]
-        };
-        [a, inner_a, inner_b, b]
     }
 
     /// This track with other rotors at some keys, `(key, rotor)`. All other keys keep their numbers. The file's own
@@ -328,10 +241,4 @@ fn aligned(keys: impl Iterator<Item = Rotor>) -> Keys {
         own
     })
     .collect()
-}
-
-/// Inner points of squad with the three-point (parabola) rate at the key.
-fn inner_points(before: Rotor, key: Rotor, after: Rotor, before_secs: f64, after_secs: f64) -> [Rotor; 2] {
-    let rate = parabola_rate(before, key, after, before_secs, after_secs);
-    squad_inner_uneven(before, key, after, before_secs, after_secs, rate)
 }

@@ -4,7 +4,8 @@ use std::sync::Arc;
 
 use crate::skeleton::{LocalPose, Skeleton, WorldJoint};
 
-use super::rotation_track::{PathKind, RotationTrack};
+use super::path::PathKind;
+use super::rotation_track::RotationTrack;
 use super::times::Times;
 use super::vector_track::VectorTrack;
 

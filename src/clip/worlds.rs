@@ -6,7 +6,7 @@ use crate::rotor::Rotor;
 use crate::rotor::batch::{self, Level, Streams};
 use crate::skeleton::WorldJoint;
 
-use super::rotation_track::PathKind;
+use super::path::PathKind;
 use super::take::Clip;
 
 /// Where each joint stands and how it is turned in the scene, at some times.

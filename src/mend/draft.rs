@@ -1,6 +1,6 @@
 //! A rotation track under mending: numbers that can be changed in place, in the file's own form too.
 
-use crate::clip::{FileAngles, PathKind, Paths, RotationTrack, Stored, Times};
+use crate::clip::{FileAngles, PathKind, Paths, RotationTrack, Segments, Stored, Times};
 use crate::rotor::{Axis, Bivector, EulerOrder, Rotor};
 use crate::snag::nearest_plane_angles;
 
@@ -19,6 +19,7 @@ pub(super) struct Draft {
     pub(super) keys: Vec<Rotor>,
     pub(super) paths: Paths,
     pub(super) tangents: Option<Vec<[Rotor; 2]>>,
+    segments: Segments,
     pub(super) form: Form,
     /// Largest change of orientation at a key since the last [`Draft::take_change`], in radians.
     change_rad: f64,
@@ -39,6 +40,7 @@ impl Draft {
             keys: track.keys.to_vec(),
             paths: track.paths.clone(),
             tangents: track.tangents.as_ref().map(|tangents| tangents.to_vec()),
+            segments: track.segments.clone(),
             form,
             change_rad: 0.0,
             is_changed: false,
@@ -59,6 +61,7 @@ impl Draft {
             keys: self.keys.into(),
             paths: self.paths,
             tangents: self.tangents.map(Into::into),
+            segments: self.segments,
             stored,
         })
     }

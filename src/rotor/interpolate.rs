@@ -1,6 +1,6 @@
 //! Paths between two rotors: slerp, nlerp, and squad with its inner points.
 
-use super::{Bivector, Rotor};
+use super::{Bivector, Motion, Rotor};
 
 /// Spherical linear interpolation the short way: the turn from `a` to `b` at constant rate.
 ///
@@ -48,6 +48,28 @@ pub fn slerp_as_signed(a: Rotor, b: Rotor, t: f64) -> Rotor {
 #[must_use]
 pub fn squad(a: Rotor, inner_a: Rotor, inner_b: Rotor, b: Rotor, t: f64) -> Rotor {
     slerp_as_signed(slerp_as_signed(a, b, t), slerp_as_signed(inner_a, inner_b, t), 2.0 * t * (1.0 - t))
+}
+
+/// [`slerp_as_signed`] with its rate and acceleration by `t`.
+#[must_use]
+pub fn slerp_motion(a: Rotor, b: Rotor, t: f64) -> Motion {
+    let step = (a.reverse() * b).plane_angles_as_signed();
+    Motion { orientation: slerp_as_signed(a, b, t), rate: step, acceleration: Bivector::ZERO }
+}
+
+/// [`squad`] with its rate and acceleration by `t`, exact: exp and log carry both along.
+#[must_use]
+pub fn squad_motion(a: Rotor, inner_a: Rotor, inner_b: Rotor, b: Rotor, t: f64) -> Motion {
+    let (outer, inner) = (slerp_motion(a, b, t), slerp_motion(inner_a, inner_b, t));
+    let [angles, first, second] = (outer.reverse() * inner).plane_angles_as_signed();
+    // 2t(1 − t) of the way from the outer arc to the inner one.
+    let (share, share_first, share_second) = (2.0 * t * (1.0 - t), 2.0 - 4.0 * t, -4.0);
+    let pull = Motion::turning(
+        angles * share,
+        angles * share_first + first * share,
+        angles * share_second + first * (2.0 * share_first) + second * share,
+    );
+    outer * pull
 }
 
 /// Shoemake's inner point of `key` for evenly spaced keys; it serves the segments on both sides.

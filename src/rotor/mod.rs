@@ -11,19 +11,23 @@ mod filter;
 mod interpolate;
 mod matrix;
 mod mean;
+mod motion;
 #[expect(clippy::module_inception, reason = "the noun of the file is the noun of the layer")]
 mod rotor;
+mod slope;
 mod spline;
 mod swing_twist;
 
 pub use bivector::Bivector;
-pub use cumulative::{b_spline, hermite};
+pub use cumulative::{BSplineEnds, RotationBSpline, b_spline, hermite, hermite_motion};
 pub use euler::{Axis, EulerOrder, NoEulerOrder};
 pub use filter::{KernelError, convolve};
 pub use interpolate::{
-    mean_rate, nlerp, parabola_rate, slerp, slerp_as_signed, squad, squad_inner, squad_inner_uneven,
+    mean_rate, nlerp, parabola_rate, slerp, slerp_as_signed, slerp_motion, squad, squad_inner,
+    squad_inner_uneven, squad_motion,
 };
 pub use mean::{Mean, chordal_mean, geodesic_mean};
+pub use motion::Motion;
 pub use rotor::Rotor;
-pub use spline::{EndRates, RotationSpline, SplineError};
+pub use spline::{EndRate, EndRates, RotationSpline, SplineError};
 pub use swing_twist::SwingTwist;

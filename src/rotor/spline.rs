@@ -4,7 +4,8 @@ use std::f64::consts::PI;
 
 use glam::{DMat3, DVec3};
 
-use super::{Bivector, Rotor};
+use super::slope::{inverse_jacobian, jacobian, turning_term};
+use super::{Bivector, Motion, Rotor};
 
 /// Interpolating spline with continuous body rate and acceleration: in each segment the plane angles from its first key
 /// are a cubic of time.
@@ -26,8 +27,41 @@ pub enum EndRates {
     /// The mean rate of the first and of the last segment.
     #[default]
     Secant,
+    /// No acceleration at the ends.
+    Natural,
     /// These body rates in radians per second, at the first and at the last key. Zero for a standstill.
     Given(Bivector, Bivector),
+    /// A closed loop: rate and acceleration at the last key are those at the first. The last key should be the same
+    /// rotation as the first; where it is not, the turn jumps at the seam and the rates still meet.
+    Loop,
+    /// Its own for each side.
+    Sides(EndRate, EndRate),
+}
+
+/// What the curve does at one end.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub enum EndRate {
+    /// The mean rate of the segment there.
+    #[default]
+    Secant,
+    /// No acceleration.
+    Natural,
+    /// This body rate in radians per second.
+    Given(Bivector),
+}
+
+impl EndRates {
+    /// Each end by itself; `None` for a closed loop.
+    #[must_use]
+    pub const fn sides(self) -> Option<[EndRate; 2]> {
+        match self {
+            Self::Secant => Some([EndRate::Secant; 2]),
+            Self::Natural => Some([EndRate::Natural; 2]),
+            Self::Given(first, last) => Some([EndRate::Given(first), EndRate::Given(last)]),
+            Self::Sides(first, last) => Some([first, last]),
+            Self::Loop => None,
+        }
+    }
 }
 
 /// Why there is no spline through the keys.
@@ -141,6 +175,16 @@ impl RotationSpline {
         Bivector::from_axis(jacobian(angles) * cubic.second(s) + turning_term(angles, cubic.first(s)))
     }
 
+    /// Rotation, rate and acceleration at time `t` in seconds, as [`RotationSpline::at`], [`RotationSpline::rate`] and
+    /// [`RotationSpline::acceleration`] give them.
+    #[must_use]
+    pub fn motion_at(&self, t: f64) -> Motion {
+        let (segment, s) = self.segment_at(t);
+        let cubic = &self.segments[segment];
+        let angles = [cubic.angles(s), cubic.first(s), cubic.second(s)].map(Bivector::from_axis);
+        Motion { orientation: self.at(t), ..Motion::turning(angles[0], angles[1], angles[2]) }
+    }
+
     /// The segment that holds `t`, and the seconds since its start.
     fn segment_at(&self, t: f64) -> (usize, f64) {
         let last = self.segments.len() - 1;
@@ -154,7 +198,7 @@ impl RotationSpline {
 /// Radians below a half turn from which on the direction of the short way is rounding.
 const HALF_TURN_MARGIN: f64 = 1e-6;
 
-fn check_keys(times: &[f64], keys: &[Rotor]) -> Result<(), SplineError> {
+pub(super) fn check_keys(times: &[f64], keys: &[Rotor]) -> Result<(), SplineError> {
     if times.len() != keys.len() {
         return Err(SplineError::CountsDiffer { times: times.len(), keys: keys.len() });
     }
@@ -222,15 +266,23 @@ fn rates_at_keys(secs: &[f64], arcs: &[DVec3], ends: EndRates) -> Result<Vec<DVe
         .chain((1..n).map(|i| 0.5 * (arcs[i - 1] / secs[i - 1] + arcs[i] / secs[i])))
         .chain(std::iter::once(arcs[n - 1] / secs[n - 1]))
         .collect();
-    if let EndRates::Given(first, last) = ends {
-        (rates[0], rates[n]) = (first.axis(), last.axis());
-    }
-    if n == 1 {
-        return Ok(rates);
+    let ends = ends.sides();
+    if let Some(sides) = ends {
+        for (key, side) in [(0, sides[0]), (n, sides[1])] {
+            if let EndRate::Given(rate) = side {
+                rates[key] = rate.axis();
+            }
+        }
+        if n == 1 && !sides.contains(&EndRate::Natural) {
+            return Ok(rates);
+        }
     }
     let (mut change, mut share) = (f64::INFINITY, 1.0_f64);
     for round in 1..=MOST_ROUNDS {
-        let next = solve_round(secs, arcs, &rates);
+        let next = match ends {
+            Some(sides) => solve_open(secs, arcs, &rates, sides),
+            None => solve_loop(secs, arcs, &rates),
+        };
         let size = next.iter().fold(0.0, |size: f64, rate| size.max(rate.length()));
         // `max` passes over NaN, and a length overflows long before its parts do.
         if !(next.iter().all(|rate| rate.is_finite()) && size.is_finite()) {
@@ -253,133 +305,105 @@ fn rates_at_keys(secs: &[f64], arcs: &[DVec3], ends: EndRates) -> Result<Vec<DVe
     Err(SplineError::NotSettled { change, rounds: MOST_ROUNDS })
 }
 
-/// One round: the block tridiagonal system by elimination from the first to the last key and back.
-fn solve_round(secs: &[f64], arcs: &[DVec3], rates: &[DVec3]) -> Vec<DVec3> {
+/// One condition: `lower · rate before + diagonal · own rate + upper · rate after = right`.
+struct Row {
+    lower: DMat3,
+    diagonal: DMat3,
+    upper: DMat3,
+    right: DVec3,
+}
+
+impl Row {
+    /// The acceleration does not jump where segment `before` gives way to segment `after`, at a key of the rate `rate` so far.
+    fn inner(secs: &[f64], arcs: &[DVec3], before: usize, after: usize, rate: DVec3) -> Self {
+        let (secs_before, secs_after) = (secs[before], secs[after]);
+        let right = 6.0 * (arcs[before] / (secs_before * secs_before) + arcs[after] / (secs_after * secs_after))
+            - turning_term(arcs[before], inverse_jacobian(arcs[before]) * rate);
+        Self {
+            lower: jacobian(arcs[before]) * (2.0 / secs_before),
+            diagonal: DMat3::from_diagonal(DVec3::splat(4.0 * (1.0 / secs_before + 1.0 / secs_after))),
+            upper: inverse_jacobian(arcs[after]) * (2.0 / secs_after),
+            right,
+        }
+    }
+
+    /// The rate itself is known.
+    fn known(rate: DVec3) -> Self {
+        Self { lower: DMat3::ZERO, diagonal: DMat3::IDENTITY, upper: DMat3::ZERO, right: rate }
+    }
+
+    /// No acceleration at the start of the first segment.
+    fn natural_start(secs: f64, arc: DVec3) -> Self {
+        let diagonal = DMat3::from_diagonal(DVec3::splat(2.0));
+        Self { lower: DMat3::ZERO, diagonal, upper: inverse_jacobian(arc), right: 3.0 * arc / secs }
+    }
+
+    /// No acceleration at the end of the last segment, where the rate is `rate` so far.
+    fn natural_end(secs: f64, arc: DVec3, rate: DVec3) -> Self {
+        let right = 6.0 * arc / secs - secs * turning_term(arc, inverse_jacobian(arc) * rate);
+        let diagonal = DMat3::from_diagonal(DVec3::splat(4.0));
+        Self { lower: jacobian(arc) * 2.0, diagonal, upper: DMat3::ZERO, right }
+    }
+}
+
+/// One round with two ends: the block tridiagonal system by elimination from the first to the last key and back.
+fn solve_open(secs: &[f64], arcs: &[DVec3], rates: &[DVec3], [start, end]: [EndRate; 2]) -> Vec<DVec3> {
     let n = secs.len();
-    let mut next = rates.to_vec();
-    // For each inner key, `rate = constant − factor · rate of the next`.
-    let mut eliminated: Vec<(DMat3, DVec3)> = Vec::with_capacity(n - 1);
-    for i in 1..n {
-        let (before, after) = (secs[i - 1], secs[i]);
-        let lower = jacobian(arcs[i - 1]) * (2.0 / before);
-        let upper = inverse_jacobian(arcs[i]) * (2.0 / after);
-        let diagonal = 4.0 * (1.0 / before + 1.0 / after);
-        let right = 6.0 * (arcs[i - 1] / (before * before) + arcs[i] / (after * after))
-            - turning_term(arcs[i - 1], inverse_jacobian(arcs[i - 1]) * rates[i]);
+    let row = |key: usize| match key {
+        0 if start == EndRate::Natural => Row::natural_start(secs[0], arcs[0]),
+        key if key == n && end == EndRate::Natural => {
+            Row::natural_end(secs[n - 1], arcs[n - 1], rates[n])
+        }
+        // Known rates stand in the guess.
+        key if key == 0 || key == n => Row::known(rates[key]),
+        key => Row::inner(secs, arcs, key - 1, key, rates[key]),
+    };
+    // For each key, `rate = constant − factor · rate of the next`.
+    let mut eliminated: Vec<(DMat3, DVec3)> = Vec::with_capacity(n + 1);
+    for key in 0..=n {
+        let Row { lower, diagonal, upper, right } = row(key);
         let (pivot, right) = match eliminated.last() {
-            None => (DMat3::from_diagonal(DVec3::splat(diagonal)), right - lower * rates[0]),
-            Some(&(factor, constant)) => {
-                (DMat3::from_diagonal(DVec3::splat(diagonal)) - lower * factor, right - lower * constant)
-            }
+            None => (diagonal, right),
+            Some(&(factor, constant)) => (diagonal - lower * factor, right - lower * constant),
         };
         let inverse = pivot.inverse();
         eliminated.push((inverse * upper, inverse * right));
     }
-    for i in (1..n).rev() {
-        let (factor, constant) = eliminated[i - 1];
-        next[i] = constant - factor * next[i + 1];
+    let mut next = vec![DVec3::ZERO; n + 1];
+    let mut after = DVec3::ZERO;
+    for (rate, (factor, constant)) in next.iter_mut().zip(eliminated).rev() {
+        after = constant - factor * after;
+        *rate = after;
     }
     next
 }
 
-/// The matrix `[f]` with `[f] v = f × v`.
-fn cross_matrix(f: DVec3) -> DMat3 {
-    DMat3::from_cols(DVec3::new(0.0, f.z, -f.y), DVec3::new(-f.z, 0.0, f.x), DVec3::new(f.y, -f.x, 0.0))
-}
-
-/// Turns shorter than this, in radians, take the series: the closed forms divide what has cancelled by powers of it.
-const SERIES_BELOW_RAD: f64 = 0.1;
-
-/// `J` in `rate = J(f) · df/dt`: from the slope of the plane angles `f` to the body rate.
-fn jacobian(f: DVec3) -> DMat3 {
-    let (f1, f2) = (f.length(), f.length_squared());
-    // (1 − cos f)/f² without cancelling.
-    let half = 0.5 * f1;
-    let sinc = if half < 1e-8 { 1.0 } else { half.sin() / half };
-    let cross = cross_matrix(f);
-    DMat3::IDENTITY - cross * (0.5 * sinc * sinc) + cross * cross * sine_rest(f1, f2)
-}
-
-/// The inverse of [`jacobian`]; exists below a full turn.
-fn inverse_jacobian(f: DVec3) -> DMat3 {
-    let (f1, f2) = (f.length(), f.length_squared());
-    let factor = if f1 < SERIES_BELOW_RAD {
-        1.0 / 12.0 + f2 * (1.0 / 720.0 + f2 * (1.0 / 30_240.0 + f2 / 1_209_600.0))
-    } else {
-        (1.0 - 0.5 * f1 / (0.5 * f1).tan()) / f2
-    };
-    let cross = cross_matrix(f);
-    DMat3::IDENTITY + cross * 0.5 + cross * cross * factor
-}
-
-/// The part of the acceleration that comes from the turning of the plane while the angles `f` change at `g`:
-/// the acceleration is `J(f) d²f/dt²` and this.
-fn turning_term(f: DVec3, g: DVec3) -> DVec3 {
-    let (f1, f2) = (f.length(), f.length_squared());
-    let (k1, k2) = if f1 < SERIES_BELOW_RAD {
-        (
-            1.0 / 12.0 + f2 * (-1.0 / 180.0 + f2 * (1.0 / 6_720.0 - f2 / 453_600.0)),
-            -1.0 / 60.0 + f2 * (1.0 / 1_260.0 - f2 / 60_480.0),
-        )
-    } else {
-        let (sin, cos) = f1.sin_cos();
-        ((2.0 * (1.0 - cos) - f1 * sin) / (f2 * f2), (3.0 * sin - 2.0 * f1 - f1 * cos) / (f2 * f2 * f1))
-    };
-    let across = f.cross(g);
-    f.dot(g) * (k1 * across + k2 * f.cross(across)) + sine_rest(f1, f2) * g.cross(across)
-}
-
-/// `(f − sin f)/f³`, of `f` and its square.
-fn sine_rest(f1: f64, f2: f64) -> f64 {
-    if f1 < SERIES_BELOW_RAD {
-        1.0 / 6.0 + f2 * (-1.0 / 120.0 + f2 * (1.0 / 5_040.0 - f2 / 362_880.0))
-    } else {
-        (f1 - f1.sin()) / (f2 * f1)
+/// One round in a closed loop: every other rate is told by that at the seam, and the condition at the seam tells that one.
+fn solve_loop(secs: &[f64], arcs: &[DVec3], rates: &[DVec3]) -> Vec<DVec3> {
+    let n = secs.len();
+    // For each inner key, `rate = constant − factor · rate of the next − seam · rate at the seam`.
+    let mut eliminated: Vec<(DMat3, DMat3, DVec3)> = Vec::with_capacity(n);
+    for key in 1..n {
+        let Row { lower, diagonal, upper, right } = Row::inner(secs, arcs, key - 1, key, rates[key]);
+        let (pivot, seam, right) = match eliminated.last() {
+            None => (diagonal, lower, right),
+            Some(&(factor, seam, constant)) => {
+                (diagonal - lower * factor, lower * seam * -1.0, right - lower * constant)
+            }
+        };
+        let inverse = pivot.inverse();
+        eliminated.push((inverse * upper, inverse * seam, inverse * right));
     }
-}
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-
-    /// Angles of the same direction and of all sizes, the limit of the series among them.
-    fn sizes() -> impl Iterator<Item = DVec3> {
-        let direction = DVec3::new(2.0, -1.0, 0.5).normalize();
-        [0.0, 1e-300, 1e-9, 1e-3, 0.05, 0.099_999, 0.100_001, 1.0, 3.0, 6.0]
-            .into_iter()
-            .map(move |size| direction * size)
+    // From the seam back: `rate = constant − seam · rate at the seam`; the seam itself is −1 of it.
+    let mut by_seam = vec![(DVec3::ZERO, DMat3::IDENTITY * -1.0); n + 1];
+    for key in (1..n).rev() {
+        let (factor, seam, constant) = eliminated[key - 1];
+        let (after_constant, after_seam) = by_seam[key + 1];
+        by_seam[key] = (constant - factor * after_constant, seam - factor * after_seam);
     }
-
-    #[test]
-    fn the_two_jacobians_undo_each_other() {
-        for f in sizes() {
-            let product = jacobian(f) * inverse_jacobian(f);
-            assert!(product.abs_diff_eq(DMat3::IDENTITY, 3e-14), "{f}: {product}");
-        }
-    }
-
-    #[test]
-    fn the_jacobian_is_the_slope_of_exp() {
-        // Body rate of exp(f + g t) by a central difference.
-        let (g, dt) = (DVec3::new(0.3, 0.7, -0.2), 1e-5);
-        for f in sizes() {
-            let at = |t: f64| Rotor::from_plane_angles(Bivector::from_axis(f + g * t));
-            let rate = ((at(-dt).reverse() * at(dt)).plane_angles() / (2.0 * dt)).axis();
-            assert!(rate.abs_diff_eq(jacobian(f) * g, 1e-9), "{f}: {rate}");
-            // And its change: J(f + g t) g has the slope of the turning term alone, as g stays.
-            let slope = (jacobian(f + g * dt) * g - jacobian(f - g * dt) * g) / (2.0 * dt);
-            assert!(slope.abs_diff_eq(turning_term(f, g), 1e-9), "{f}: {slope}");
-        }
-    }
-
-    #[test]
-    fn series_and_closed_forms_meet() {
-        let direction = DVec3::new(2.0, -1.0, 0.5).normalize();
-        let g = DVec3::new(0.9, 0.2, -0.4);
-        let sides = [1.0 - 1e-12, 1.0 + 1e-12].map(|share| direction * (SERIES_BELOW_RAD * share));
-        let [below, above] = sides.map(|f| inverse_jacobian(f) * g);
-        assert!(below.abs_diff_eq(above, 2e-13), "{below} {above}");
-        let [below, above] = sides.map(|f| turning_term(f, g));
-        assert!(below.abs_diff_eq(above, 2e-13), "{below} {above}");
-    }
+    let Row { lower, diagonal, upper, right } = Row::inner(secs, arcs, n - 1, 0, rates[0]);
+    let ((before, before_seam), (after, after_seam)) = (by_seam[n - 1], by_seam[1]);
+    let pivot = diagonal - lower * before_seam - upper * after_seam;
+    let seam = pivot.inverse() * (right - lower * before - upper * after);
+    by_seam.into_iter().map(|(constant, factor)| constant - factor * seam).collect()
 }

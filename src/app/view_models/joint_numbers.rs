@@ -1,6 +1,6 @@
 //! The numbers of one joint at one time.
 
-use crate::clip::{Clip, PathKind, Paths, Place, Stored};
+use crate::clip::{Clip, Paths, Place, Stored};
 use crate::rotor::SwingTwist;
 
 use super::sampled::{limb_direction, rotation_at};
@@ -67,10 +67,7 @@ pub fn joint_numbers(source: &Clip, result: &Clip, joint: usize, time_secs: f64)
 
 fn path_word(paths: &Paths) -> &'static str {
     match paths {
-        Paths::Every(PathKind::Hold) => "hold",
-        Paths::Every(PathKind::Slerp) => "slerp",
-        Paths::Every(PathKind::Squad) => "squad",
-        Paths::Every(PathKind::Cubic) => "cubic",
+        Paths::Every(kind) => kind.name(),
         Paths::Each(_) => "mixed",
     }
 }

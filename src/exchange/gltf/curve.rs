@@ -156,7 +156,7 @@ fn playable(track: &RotationTrack) -> Cow<'_, RotationTrack> {
                     keys.push(track.keys[segment]);
                 }
             }
-            PathKind::Squad | PathKind::Cubic => {
+            PathKind::Squad | PathKind::Cubic | PathKind::Spline | PathKind::BSpline => {
                 let ends = [(start, track.at(start)), (end, track.at(end))];
                 halve(track, ends, MAX_HALVINGS, &mut secs, &mut keys);
             }

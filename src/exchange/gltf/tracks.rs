@@ -6,7 +6,7 @@ use std::sync::Arc;
 
 use glam::DVec3;
 
-use crate::clip::{PathKind, Paths, RotationTrack, Stored, Times, VectorPath, VectorTrack};
+use crate::clip::{PathKind, Paths, RotationTrack, Segments, Stored, Times, VectorPath, VectorTrack};
 use crate::exchange::Note;
 use crate::rotor::Rotor;
 
@@ -233,6 +233,7 @@ fn rotation_track(keys: &Keys<'_>, interpolation: Interpolation) -> RotationTrac
         keys: keys.iter().map(|values| rotor(values[middle])).collect(),
         paths: Paths::Every(path),
         tangents: is_cubic.then(|| keys.iter().map(|values| [rotor(values[0]), rotor(values[2])]).collect()),
+        segments: Segments::default(),
         stored: Stored::Rotors,
     }
 }
