@@ -71,16 +71,18 @@ fn moving_product(start: Rotor, turns: [Bivector; 3], shares: [[f64; 3]; 3]) -> 
 }
 
 /// A smoothing curve near its keys: the cubic B-spline whose knots are the key times, even or not. Rate and acceleration
-/// don't jump anywhere. With even times its segments are those of [`b_spline`].
+/// don't jump anywhere. With even times its controls are the keys, and its segments those of [`b_spline`]; else the
+/// controls are taken from the arcs between keys at the mean of three knots, so that an even turn stays even.
 ///
 /// It passes through the first and the last key, with no acceleration there, and near the others.
 ///
-/// Source: Kim, Kim & Shin 1995; the shares for uneven knots from the recursion of Cox 1972 and de Boor 1972.
+/// Source: Kim, Kim & Shin 1995; the shares for uneven knots from the recursion of Cox 1972 and de Boor 1972, the places of the
+/// controls from Schoenberg 1967.
 #[derive(Clone, Debug)]
 pub struct RotationBSpline {
     times: Vec<f64>,
-    /// A control before each segment's own first key, and the turns from control to control from there on: the curve of segment
-    /// `i` is made of controls `i`, and of turns `i`, `i + 1` and `i + 2`.
+    /// The first control of each segment, and the turns from control to control: the curve of segment `i` is made of control
+    /// `i` and turns `i`, `i + 1` and `i + 2`.
     starts: Vec<Rotor>,
     turns: Vec<Bivector>,
     /// Seconds from knot to knot, two more than segments on either side.
@@ -106,21 +108,52 @@ impl RotationBSpline {
         check_keys(times, keys)?;
         let n = times.len() - 1;
         let inner_secs: Vec<f64> = times.windows(2).map(|pair| pair[1] - pair[0]).collect();
-        let inner_turns: Vec<Bivector> =
+        let steps: Vec<Bivector> =
             keys.windows(2).map(|pair| (pair[0].reverse() * pair[1]).plane_angles()).collect();
         // The segments thought before the first and behind the last.
-        let ([first, second], [after, last]) = match ends {
+        let (before, behind) = match ends {
             BSplineEnds::Natural => ([1.min(n - 1), 0], [n - 1, n.saturating_sub(2)]),
             BSplineEnds::Loop => ([(2 * n - 2) % n, n - 1], [0, 1 % n]),
         };
-        let around = |before: [usize; 2], behind: [usize; 2]| {
-            before.into_iter().chain(0..n).chain(behind).collect::<Vec<_>>()
+        let secs: Vec<f64> =
+            before.into_iter().chain(0..n).chain(behind).map(|segment| inner_secs[segment]).collect();
+        // Signs follow one another, so that a step between controls may pass half a turn.
+        let mut signed = vec![keys[0]];
+        for key in &keys[1..] {
+            signed.push(key.aligned_to(signed[signed.len() - 1]));
+        }
+        let control = |key: usize| {
+            // The mean of the knots before, at and after the key, against the key.
+            let (before, after) = (secs[key + 1], secs[key + 2]);
+            let off = (after - before) / 3.0;
+            let share = if off < 0.0 { off / before } else { off / after };
+            let step = match (off < 0.0, ends) {
+                _ if off == 0.0 => Bivector::ZERO,
+                (true, _) if key > 0 => steps[key - 1],
+                (true, _) => steps[n - 1],
+                (false, _) if key < n => steps[key],
+                (false, _) => steps[0],
+            };
+            signed[key] * Rotor::from_plane_angles(step * share)
         };
-        let order = around([first, second], [after, last]);
-        let secs = order.iter().map(|&segment| inner_secs[segment]).collect();
-        let turns: Vec<Bivector> = order[1..n + 3].iter().map(|&segment| inner_turns[segment]).collect();
-        let before = keys[0] * Rotor::from_plane_angles(-turns[0]);
-        let starts = std::iter::once(before).chain(keys[..n - 1].iter().copied()).collect();
+        let mut controls: Vec<Rotor> = (0..=n).map(control).collect();
+        // One more on either side: turned about the end, or from across the seam.
+        let (first, last) = match ends {
+            BSplineEnds::Natural => (
+                controls[0] * (controls[1].reverse() * controls[0]),
+                controls[n] * (controls[n - 1].reverse() * controls[n]),
+            ),
+            BSplineEnds::Loop => (
+                controls[0] * (controls[n].reverse() * controls[n - 1]),
+                controls[n] * (controls[0].reverse() * controls[1]),
+            ),
+        };
+        controls.insert(0, first);
+        controls.push(last);
+        let turns =
+            controls.windows(2).map(|pair| (pair[0].reverse() * pair[1]).plane_angles_as_signed()).collect();
+        controls.truncate(n);
+        let starts = controls;
         Ok(Self { times: times.to_vec(), starts, turns, secs })
     }
 

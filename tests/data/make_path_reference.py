@@ -4,8 +4,8 @@
     python3 tests/data/make_path_reference.py > tests/data/path_reference.json
 
 The keys are exact numbers of the machine, made unit first. The curves are computed from their definitions (Shoemake 1987
-for squad, Kim, Kim & Shin 1995 for the cumulative ones, with the basis by the recursion of Cox and de Boor, appendix C.5
-of glTF 2.0 for the cubic); rates and accelerations by numeric derivatives of the four numbers at high precision.
+for squad, Kim, Kim & Shin 1995 for the cumulative ones, with the basis by the recursion of Cox and de Boor and controls
+at the mean of three knots, appendix C.5 of glTF 2.0 for the cubic); rates and accelerations by numeric derivatives of the four numbers at high precision.
 Rotors are `s, yz, zx, xy`.
 """
 
@@ -118,17 +118,30 @@ def bspline_track(secs, keys, t, is_loop):
     w = [log(product(reverse(keys[i]), keys[i + 1])) for i in range(n)]
     if is_loop:
         before, after = [h[(n - 3) % n], h[(n - 2) % n], h[n - 1]], [h[0], h[1 % n], h[2 % n]]
-        first, last = w[n - 1], w[0]
     else:
         before = [h[min(2, n - 1)], h[min(1, n - 1)], h[0]]
         after = [h[n - 1], h[max(n - 2, 0)], h[max(n - 3, 0)]]
-        first, last = w[0], w[n - 1]
     knots = [secs[0] - sum(before), secs[0] - before[1] - before[2], secs[0] - before[2]] + list(secs)
     for step in after:
         knots.append(knots[-1] + step)
-    # Control j stands at knots[j + 2]; its basis begins at knots[j].
-    controls = [product(keys[0], exp(times(first, -1)))] + list(keys) + [product(keys[n], exp(last))]
-    turns = [first] + w + [last]
+    # Control j stands at the mean of knots[j + 1] to knots[j + 3]; its basis begins at knots[j].
+    def on_arcs(t):
+        if t < secs[0]:
+            return product(keys[0], exp(times(w[n - 1], (t - secs[0]) / h[n - 1])))
+        if t >= secs[n]:
+            return product(keys[n], exp(times(w[0], (t - secs[n]) / h[0])))
+        i = max(k for k in range(n) if secs[k] <= t)
+        return product(keys[i], exp(times(w[i], (t - secs[i]) / h[i])))
+
+    inner = [on_arcs((knots[k + 2] + knots[k + 3] + knots[k + 4]) / 3) for k in range(n + 1)]
+    if is_loop:
+        first = product(inner[0], product(reverse(inner[n]), inner[n - 1]))
+        last = product(inner[n], product(reverse(inner[0]), inner[1]))
+    else:
+        first = product(inner[0], product(reverse(inner[1]), inner[0]))
+        last = product(inner[n], product(reverse(inner[n - 1]), inner[n]))
+    controls = [first] + inner + [last]
+    turns = [log(product(reverse(a), b)) for a, b in zip(controls, controls[1:])]
     # The order of the basis is 4; the control of knots[j + 2] has the basis over knots j to j + 4.
     curve = controls[0]
     for j in range(1, len(controls)):
@@ -180,12 +193,13 @@ def random_track(hard):
     count = 7
     secs, keys = [0.25], [unit([RANDOM.gauss(0, 1) for _ in range(4)])]
     for i in range(1, count):
-        secs.append(secs[-1] + RANDOM.choice([0.125, 0.5, 0.25, 1.5]))
-        size = RANDOM.uniform(0.1, 2.0)
+        # Not so uneven that the pull of squad would have to be held back.
+        secs.append(secs[-1] + RANDOM.choice([0.25, 0.375, 0.5]))
+        size = RANDOM.uniform(0.1, 1.2)
         if hard and i == 3:
             size = 1e-9
         if hard and i == 4:
-            size = 3.0
+            size = 2.0
         keys.append(product(keys[-1], exp([mp.mpf(a) for a in random_turn(size)])))
     return secs, [[float(x) for x in key] for key in keys]
 

@@ -1,5 +1,7 @@
 //! Playing a track: orientation, rate and acceleration at any time.
 
+use std::f64::consts::TAU;
+
 use crate::rotor::{
     Bivector, EndRate, EndRates, Motion, Rotor, parabola_rate, slerp, slerp_motion, squad, squad_motion,
 };
@@ -245,29 +247,30 @@ impl RotationTrack {
         let b = lead.point(piece + 1).aligned_to(a);
         let step = (a.reverse() * b).plane_angles_as_signed();
         let before = if piece > 0 {
-            Neighbour::Step(lead.point(piece - 1).aligned_to(a), secs)
+            Neighbour::Step { pose: lead.point(piece - 1).aligned_to(a), secs, is_last: false }
         } else {
             self.before(key, a, path, sound)
         };
         let after = if piece + 1 < lead.pieces {
-            Neighbour::Step(lead.point(piece + 2).aligned_to(b), secs)
+            Neighbour::Step { pose: lead.point(piece + 2).aligned_to(b), secs, is_last: false }
         } else {
             self.after(key, b, path, sound)
         };
+        let is_free = [&before, &after].map(|side| matches!(side, Neighbour::None));
         // Half the difference of the wanted slope and that of slerp (Shoemake 1987, solved for the inner points).
         let inner_a = match before {
             Neighbour::None => a,
             Neighbour::Rate(rate) => a * Rotor::from_plane_angles((rate * secs - step) * 0.5),
-            Neighbour::Step(before, before_secs) => {
-                let rate = parabola_rate(before, a, b, before_secs, secs);
+            Neighbour::Step { pose, secs: before_secs, is_last } => {
+                let rate = rate_at_key([pose, a, b], [before_secs, secs], [is_last, is_free[1]]);
                 a * Rotor::from_plane_angles((rate * secs - step) * 0.5)
             }
         };
         let inner_b = match after {
             Neighbour::None => b,
             Neighbour::Rate(rate) => b * Rotor::from_plane_angles((step - rate * secs) * 0.5),
-            Neighbour::Step(after, after_secs) => {
-                let rate = parabola_rate(a, b, after, secs, after_secs);
+            Neighbour::Step { pose, secs: after_secs, is_last } => {
+                let rate = rate_at_key([a, b, pose], [secs, after_secs], [is_free[0], is_last]);
                 b * Rotor::from_plane_angles((step - rate * secs) * 0.5)
             }
         };
@@ -298,7 +301,12 @@ impl RotationTrack {
         // Across the seam the step counts, as the last key stands for the first.
         let before =
             if is_seam { a * (lead.point(lead.pieces).reverse() * before) } else { before };
-        Neighbour::Step(before.aligned_to(a), secs)
+        let is_last = lead.pieces == 1
+            && match segment.checked_sub(1) {
+                Some(other) => self.kind_of(other, path) == PathKind::Hold,
+                None => self.is_free(0),
+            };
+        Neighbour::Step { pose: before.aligned_to(a), secs, is_last }
     }
 
     /// What lies behind the second key of a segment; `b` is that key.
@@ -325,7 +333,20 @@ impl RotationTrack {
         let secs = (self.times.at(segment + 1) - self.times.at(segment)) / lead.pieces as f64;
         let after = lead.point(1);
         let after = if is_seam { b * (lead.point(0).reverse() * after) } else { after };
-        Neighbour::Step(after.aligned_to(b), secs)
+        let is_last = lead.pieces == 1
+            && if segment + 1 < self.segment_count() {
+                self.kind_of(segment + 1, path) == PathKind::Hold
+            } else {
+                self.is_free(1)
+            };
+        Neighbour::Step { pose: after.aligned_to(b), secs, is_last }
+    }
+}
+
+impl RotationTrack {
+    /// Whether squad follows no rate at the track's start, 0, or end, 1.
+    fn is_free(&self, side: usize) -> bool {
+        self.segments.ends().sides().is_some_and(|sides| !matches!(sides[side], EndRate::Given(_)))
     }
 }
 
@@ -335,8 +356,8 @@ enum Neighbour {
     None,
     /// A rate that is given.
     Rate(Bivector),
-    /// The next point, and the seconds to it.
-    Step(Rotor, f64),
+    /// The next point, the seconds to it, and whether the curve follows no rate there.
+    Step { pose: Rotor, secs: f64, is_last: bool },
 }
 
 impl Neighbour {
@@ -356,4 +377,31 @@ pub(in super::super) fn piece_of(share: f64, pieces: usize) -> (usize, f64) {
     let along = share * pieces as f64;
     let piece = (along as usize).min(pieces - 1);
     (piece, along - piece as f64)
+}
+
+/// The parabola's rate at the middle one of three aligned keys, made smaller where squad could not carry it: with the pull
+/// of both inner points beside the step itself it must stay below a whole turn, or the points are taken for others. Only
+/// where a long segment follows a short and fast one does that happen. `is_alone`: whether the other end of the segment before,
+/// and of the one after, pulls at nothing.
+fn rate_at_key([before, key, after]: [Rotor; 3], secs: [f64; 2], is_alone: [bool; 2]) -> Bivector {
+    /// A little below the whole turn.
+    const MARGIN: f64 = 0.95;
+    let rate = parabola_rate(before, key, after, secs[0], secs[1]);
+    let steps = [(before.reverse() * key), (key.reverse() * after)].map(Rotor::plane_angles_as_signed);
+    let sides = steps.into_iter().zip(secs).zip(is_alone);
+    let share = sides.fold(1.0_f64, |share, ((step, secs), is_alone)| {
+        // |share · rate · secs − step| ≤ most, where twice the pull stands on the left.
+        let most = MARGIN * (TAU - step.length()) * if is_alone { 2.0 } else { 1.0 };
+        let (a, b, c) = (
+            rate.dot(rate) * secs * secs,
+            rate.dot(step) * secs,
+            step.dot(step) - most * most,
+        );
+        if a == 0.0 {
+            return share;
+        }
+        let root = (b * b - a * c).max(0.0).sqrt();
+        share.min(((b + root) / a).max(0.0))
+    });
+    rate * share
 }

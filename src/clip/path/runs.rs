@@ -149,12 +149,18 @@ fn border(
     let secs = track.times.at(segment + 1) - track.times.at(segment);
     match track.kind_of(segment, path) {
         PathKind::Hold => None,
-        // Without acceleration at its ends a B-spline has the mean rate of its last step there.
         PathKind::BSpline => {
-            let lead = track.lead(segment, |key| keys[key]);
-            let piece = if share == 0.0 { 0 } else { lead.pieces - 1 };
-            let step = (lead.point(piece).reverse() * lead.point(piece + 1)).plane_angles();
-            Some(step * (lead.pieces as f64 / secs))
+            let is_of_run = |own: &usize| track.kind_of(*own, path) == PathKind::BSpline;
+            let run = if share == 0.0 {
+                segment..(segment..keys.len() - 1).take_while(is_of_run).last()? + 1
+            } else {
+                (0..=segment).rev().take_while(is_of_run).last()?..segment + 1
+            };
+            let secs = track.times.at(if share == 0.0 { run.start } else { run.end });
+            match curve(track, path, keys, PathKind::BSpline, run).ok()? {
+                Curve::BSpline(curve) => Some(curve.motion_at(secs).rate),
+                Curve::Spline(_) | Curve::Squad => None,
+            }
         }
         kind => Some(track.local_motion(segment, share, kind, path, |key| keys[key]).rate / secs),
     }

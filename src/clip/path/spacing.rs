@@ -1,7 +1,10 @@
 //! How fast a segment moves along its path.
 
-/// The shallowest slope of time along the handles' curve; with it a segment is never more than a hundred times as fast as even.
+/// The shallowest slope of time along the curve of handles under a pointer: nowhere more than a hundred times as fast as even.
 const LEAST_SLOPE: f64 = 0.03;
+
+/// The shallowest slope that is taken at all. Parts of a curve that was cut may reach it.
+const LEAST_ACCEPTED: f64 = 0.009;
 
 /// How fast a segment moves along its path: a rising curve from the share of its time to the share of its way.
 ///
@@ -48,15 +51,15 @@ pub struct Pace {
 #[derive(Clone, Copy, Debug, PartialEq, thiserror::Error)]
 #[non_exhaustive]
 pub enum SpacingError {
-    /// Beyond 0 to 1 the curve would run back or overshoot.
-    #[error("expected each handle between 0 and 1 in time and way, found {found}")]
-    OutsideUnit {
-        /// The number that is not.
+    /// The way never goes back. Between 0 and 1 handles are always right.
+    #[error("expected handles along which the way never goes back, found it at {found:.4} of its even pace")]
+    RunsBack {
+        /// The least slope of the way along the curve.
         found: f64,
     },
     /// Time has to move on along the whole curve.
     #[error(
-        "expected handles along which time moves on, found it at {found:.4} of its even pace; at least {LEAST_SLOPE} is needed"
+        "expected handles along which time moves on, found it at {found:.4} of its even pace; at least {LEAST_ACCEPTED} is needed"
     )]
     TooSteep {
         /// The least slope of time along the curve.
@@ -65,16 +68,21 @@ pub enum SpacingError {
 }
 
 impl Spacing {
-    /// Own handles, as (share of the time, share of the way), all between 0 and 1: the curve then rises throughout.
+    /// Own handles, as (share of the time, share of the way). The way may not go back, and time has to move on: between 0 and 1
+    /// the first is always so.
     ///
     /// # Errors
-    /// When a number is outside, or time nearly stands still somewhere along the curve.
+    /// When the way goes back, or time nearly stands still somewhere along the curve.
     pub fn handles(points: [[f64; 2]; 2]) -> Result<Self, SpacingError> {
-        if let Some(&found) = points.as_flattened().iter().find(|number| !(0.0..=1.0).contains(*number)) {
-            return Err(SpacingError::OutsideUnit { found });
+        let [time, way] = [0, 1].map(|axis| least_slope(points[0][axis], points[1][axis]));
+        // Not the other way round, so that what is no number is refused.
+        if !(time >= LEAST_ACCEPTED && time.is_finite()) {
+            return Err(SpacingError::TooSteep { found: time });
         }
-        let found = least_slope(points[0][0], points[1][0]);
-        if found < LEAST_SLOPE { Err(SpacingError::TooSteep { found }) } else { Ok(Self::Own(Handles(points))) }
+        if !(way >= -1e-9 && way.is_finite()) {
+            return Err(SpacingError::RunsBack { found: way });
+        }
+        Ok(Self::Own(Handles(points)))
     }
 
     /// The handles nearest to `points` that make a spacing: into the unit square, and then to the straight line in time as
@@ -171,7 +179,7 @@ impl Spacing {
         let part = |points: [[f64; 2]; 2], from: [f64; 2], to: [f64; 2]| {
             let fit = |axis: usize, value: f64| {
                 let length = to[axis] - from[axis];
-                if length > 0.0 { ((value - from[axis]) / length).clamp(0.0, 1.0) } else { 0.0 }
+                if length > 0.0 { (value - from[axis]) / length } else { 0.0 }
             };
             Self::Own(Handles(points.map(|point| [fit(0, point[0]), fit(1, point[1])])))
         };
@@ -200,7 +208,9 @@ fn slope_factors(p: f64, q: f64) -> [f64; 3] {
 fn least_slope(p: f64, q: f64) -> f64 {
     let [a, b, _] = slope_factors(p, q);
     let turning = (a != 0.0).then(|| -b / (2.0 * a)).filter(|s| (0.0..=1.0).contains(s));
-    [0.0, 1.0].into_iter().chain(turning).map(|s| bezier(p, q, s)[1]).fold(f64::INFINITY, f64::min)
+    let slopes = [0.0, 1.0].into_iter().chain(turning).map(|s| bezier(p, q, s)[1]);
+    // `min` would pass over what is no number.
+    slopes.fold(f64::INFINITY, |least, slope| if slope < least || slope.is_nan() { slope } else { least })
 }
 
 fn quadratic_roots(a: f64, b: f64, c: f64) -> [f64; 2] {
