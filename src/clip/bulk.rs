@@ -74,13 +74,13 @@ impl RotationTrack {
                         slerps.flush(&mut found);
                     }
                 }
-                PathKind::Slerp => found[index] = self.lead(key, &sound).at(share),
+                PathKind::Slerp => found[index] = self.lead(key, sound).at(share),
                 PathKind::Squad => {
-                    let pieces = if segment.turn.is_short() { 1 } else { self.lead(key, &sound).pieces };
+                    let pieces = if segment.turn.is_short() { 1 } else { self.lead(key, sound).pieces };
                     let (piece, local) = piece_of(share, pieces);
                     let points = match squad_points {
                         Some((place, points)) if place == (key, piece) => points,
-                        _ => self.squad_points(key, piece, path, &sound),
+                        _ => self.squad_points(key, piece, path, sound),
                     };
                     squad_points = Some(((key, piece), points));
                     if squads.push(index, points, local) {

@@ -24,10 +24,8 @@ pub use contact::{
 pub use continuity::continuous_angles;
 pub use feet::standing_feet;
 pub use keys::Keys;
+pub use path::{MeantTurn, Pace, PathError, PathKind, Paths, Peak, Segment, Segments, Spacing, SpacingError};
 pub use resample::{cut, resampled};
-pub use path::{
-    MeantTurn, Pace, PathError, PathKind, Paths, Peak, Segment, Segments, Spacing, SpacingError,
-};
 pub use rotation_track::{FileAngles, RotationTrack, Stored};
 pub use take::{Clip, FrameGrid, JointTracks};
 pub use times::{Place, Times};

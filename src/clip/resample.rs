@@ -5,16 +5,12 @@ use std::sync::Arc;
 
 use glam::DVec3;
 
-use crate::rotor::Rotor;
+use crate::rotor::EndRates;
 
 use super::continuity::continuous_angles;
-<<<<<<< HEAD
 use super::keys::Keys;
-use super::rotation_track::{FileAngles, PathKind, Paths, RotationTrack, Stored};
-=======
-use super::path::{PathKind, Paths, Segments};
+use super::path::{PathKind, Paths, Segment, Segments, turn_of_travel};
 use super::rotation_track::{FileAngles, RotationTrack, Stored};
->>>>>>> 8161801 (Paths between keys: spline and B-spline runs, spacing, meant turns; rate and acceleration of every path)
 use super::take::{Clip, FrameGrid, JointTracks};
 use super::times::{Place, Times};
 use super::vector_track::{VectorPath, VectorTrack};
@@ -25,7 +21,8 @@ const SLACK: f64 = 1e-6;
 /// The clip from `from_secs` to `to_secs` at `rate` frames a second, beginning at 0.
 ///
 /// Frame `i` shows what the clip shows at `from_secs + i / rate`, as its own format plays it. A frame that falls on a key
-/// of its track takes that key's own numbers.
+/// of its track takes that key's own numbers. Meant turns that are still longer than the short way from frame to frame stay
+/// meant.
 ///
 /// # Panics
 /// When `rate` is not above 0.
@@ -145,14 +142,18 @@ fn rotation_at(track: &RotationTrack, times: &Times, at: &[f64]) -> RotationTrac
             last
         })
         .collect();
-    RotationTrack {
-        times: times.clone(),
-        keys,
-        paths,
-        tangents: None,
-        segments: Segments::default(),
-        stored,
-    }
+    let segments = if track.segments.have_turns() && paths == Paths::Every(PathKind::Slerp) {
+        let steps = (1..keys.len()).map(|frame| {
+            let travel = track.travel(snapped[frame - 1], snapped[frame]);
+            let turn = turn_of_travel(travel, track.at(snapped[frame - 1]), track.at(snapped[frame]));
+            Segment { turn, ..Segment::PLAIN }
+        });
+        // There are no more turns than before.
+        Segments::new(&steps.collect::<Vec<_>>(), EndRates::Secant).unwrap_or_default()
+    } else {
+        Segments::default()
+    };
+    RotationTrack { times: times.clone(), keys, paths, tangents: None, segments, stored }
 }
 
 fn vectors_at(track: &VectorTrack, times: &Times, at: &[f64]) -> Option<VectorTrack> {
@@ -178,52 +179,21 @@ impl Frames<'_> {
             return sliced(track, self.span.clone(), self.kept.clone());
         }
         let (times, span) = self.keys_within(&track.times);
-        let mut keys: Vec<Rotor> = track.keys[span.clone()].to_vec();
-        let mut paths: Vec<PathKind> = span.clone().map(|segment| track.paths.of(segment)).collect();
-        let mut tangents: Option<Vec<[Rotor; 2]>> =
-            track.tangents.as_ref().map(|all| all[span.clone()].to_vec());
-        let cut_key = |secs: f64| match track.times.place(secs) {
-            Some(Place::Between(key, share))
-                if track.paths.of(key) == PathKind::Cubic && track.tangents.is_some() =>
-            {
-                track.cubic_cut(key, share)
+        // Keys at the cuts; the parts keep path, spacing and turns.
+        let (mut whole, mut end) = (track.clone(), span.end);
+        for (is_cut, secs) in [(times.has_first, self.ends[0]), (times.has_last, self.ends[1])] {
+            if !is_cut {
+                continue;
             }
-            _ => (track.at(secs), Rotor::new(0.0, 0.0, 0.0, 0.0)),
-        };
-        if times.has_first {
-            let (key, rate) = cut_key(self.ends[0]);
-            let near = keys.first().copied().unwrap_or(key);
-            let is_turned = track.tangents.is_none() && key.dot(near) < 0.0;
-            keys.insert(0, if is_turned { -key } else { key });
-            paths.insert(0, track.paths.of(span.start.saturating_sub(1)));
-            if let Some(tangents) = &mut tangents {
-                tangents.insert(0, [rate, rate]);
-            }
+            let Ok(more) = whole.with_key_at(secs) else {
+                // Before the first key or after the last: it stands.
+                let keys: Keys = times.times.iter().map(|_| track.at(secs)).collect();
+                return RotationTrack::from_rotors(times.times, keys);
+            };
+            (whole, end) = (more, end + 1);
         }
-        if times.has_last {
-            let (key, rate) = cut_key(self.ends[1]);
-            let near = keys.last().copied().unwrap_or(key);
-            let is_turned = track.tangents.is_none() && key.dot(near) < 0.0;
-            keys.push(if is_turned { -key } else { key });
-            paths.push(PathKind::Slerp);
-            if let Some(tangents) = &mut tangents {
-                tangents.push([rate, rate]);
-            }
-        }
-        paths.pop();
-        let paths = match &track.paths {
-            Paths::Every(kind) => Paths::Every(*kind),
-            Paths::Each(_) => Paths::Each(paths.into()),
-        };
-        let tangents = tangents.map(Into::into);
-        RotationTrack {
-            times: times.times,
-            keys: keys.into(),
-            paths,
-            tangents,
-            segments: Segments::default(),
-            stored: Stored::Rotors,
-        }
+        let kept = span.start..=end.saturating_sub(1).max(span.start);
+        RotationTrack { stored: Stored::Rotors, ..sliced(&whole, kept, times.times) }
     }
 
     fn vectors(&self, track: &VectorTrack) -> Option<VectorTrack> {
@@ -282,6 +252,18 @@ struct CutTimes {
     has_last: bool,
 }
 
+/// Spacing and turns of the segments between the keys of `span`. Its ends are the track's own where they are kept.
+fn part_of_segments(track: &RotationTrack, span: &RangeInclusive<usize>) -> Segments {
+    let is_whole = *span.start() == 0 && span.end() + 1 == track.keys.len();
+    let ends = if is_whole { track.segments.ends() } else { EndRates::Secant };
+    if track.segments.are_plain() && ends == EndRates::Secant {
+        return Segments::default();
+    }
+    let each: Vec<Segment> = (*span.start()..*span.end()).map(|own| track.segments.of(own)).collect();
+    // There are no more turns than before.
+    Segments::new(&each, ends).unwrap_or_default()
+}
+
 fn sliced(track: &RotationTrack, span: RangeInclusive<usize>, times: Times) -> RotationTrack {
     let paths = match &track.paths {
         Paths::Every(kind) => Paths::Every(*kind),
@@ -298,8 +280,8 @@ fn sliced(track: &RotationTrack, span: RangeInclusive<usize>, times: Times) -> R
         times,
         keys: track.keys[span.clone()].into(),
         paths,
+        segments: part_of_segments(track, &span),
         tangents: track.tangents.as_ref().map(|all| all[span].into()),
-        segments: Segments::default(),
         stored,
     }
 }
@@ -307,7 +289,7 @@ fn sliced(track: &RotationTrack, span: RangeInclusive<usize>, times: Times) -> R
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::rotor::{Axis, EulerOrder};
+    use crate::rotor::{Axis, EulerOrder, Rotor};
     use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
 
     fn clip_of(track: RotationTrack, grid: Times, rate: f64) -> Clip {

@@ -4,45 +4,9 @@ use std::sync::Arc;
 
 use crate::rotor::{Axis, Bivector, EulerOrder, Rotor};
 
-<<<<<<< HEAD
 use super::keys::Keys;
-use super::times::{Place, Times};
-
-/// Which orientations a segment passes through on its way from one key to the next.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
-pub enum PathKind {
-    /// The first key is held until the second.
-    Hold,
-    /// The short arc at constant rate.
-    Slerp,
-    /// Smooth through the keys, with no jump in rate (Shoemake 1987, in its form for uneven times).
-    Squad,
-    /// glTF CUBICSPLINE: the four numbers follow a Hermite cubic with the file's tangents, then are made unit.
-    Cubic,
-}
-
-/// The path kinds of a track: segment `i` runs from key `i` to key `i + 1`.
-#[derive(Clone, Debug, PartialEq)]
-pub enum Paths {
-    /// The same in every segment.
-    Every(PathKind),
-    /// One for each segment.
-    Each(Arc<[PathKind]>),
-}
-
-impl Paths {
-    /// The kind of a segment; the last kind listed serves for what lies beyond.
-    pub fn of(&self, segment: usize) -> PathKind {
-        match self {
-            Self::Every(kind) => *kind,
-            Self::Each(kinds) => kinds.get(segment).or(kinds.last()).copied().unwrap_or(PathKind::Slerp),
-        }
-    }
-}
-=======
 use super::path::{PathKind, Paths, Segments};
 use super::times::Times;
->>>>>>> 8161801 (Paths between keys: spline and B-spline runs, spacing, meant turns; rate and acceleration of every path)
 
 /// The angles a file stores for a joint in place of a rotor.
 #[derive(Clone, Debug, PartialEq)]

@@ -6,7 +6,7 @@ use std::sync::Arc;
 use glam::DVec3;
 
 use crate::clip::{
-    Clip, Foot, FootPart, JointTracks, PathKind, Paths, PlantedSpan, RotationTrack, Slide, Stored, Times,
+    Clip, Foot, FootPart, JointTracks, PathKind, Paths, PlantedSpan, RotationTrack, Slide, Times,
     median_place, slides,
 };
 use crate::rotor::{Bivector, Rotor, chordal_mean};
@@ -359,7 +359,7 @@ pub(super) fn with_frames(clip: &Clip, joint: usize, frames: &[(usize, Rotor)]) 
         return draft.finish().map_or_else(|| clip.clone(), |track| clip.with_rotation(joint, track));
     }
     // What lies between keys of another path can't be kept by slerp: the whole track is keyed.
-    let is_slerp = track.paths == Paths::Every(PathKind::Slerp);
+    let is_slerp = track.paths == Paths::Every(PathKind::Slerp) && track.segments.are_plain();
     let count = clip.grid.count();
     let mut is_near = vec![!is_slerp; count];
     for &(frame, _) in frames {
@@ -398,13 +398,7 @@ pub(super) fn with_frames(clip: &Clip, joint: usize, frames: &[(usize, Rotor)]) 
         put(&mut keys, time, new.get(&frame).copied().unwrap_or_else(|| track.at(time)));
     }
     let (times, rotors): (Vec<f64>, Vec<Rotor>) = keys.into_iter().unzip();
-    let track = RotationTrack {
-        times: Times::Listed(times.into()),
-        keys: rotors.into(),
-        paths: Paths::Every(PathKind::Slerp),
-        tangents: None,
-        stored: Stored::Rotors,
-    };
+    let track = RotationTrack::from_rotors(Times::Listed(times.into()), rotors);
     let mut joints = clip.joints.clone();
     joints[joint] = Arc::new(JointTracks { rotation: Some(track), ..(*joints[joint]).clone() });
     Clip { joints, ..clip.clone() }

@@ -199,11 +199,7 @@ fn shares_between_knots([a, b, h, c, d]: [f64; 5], s: f64) -> [[f64; 3]; 3] {
     let k2 = -1.0 / ((b + h) * h) - 1.0 / ((h + c) * h);
     let at_start = b * b / ((b + h) * (b + h + c));
     [
-        [
-            1.0 - leaving * rest * rest * rest,
-            3.0 * leaving * rest * rest,
-            -6.0 * leaving * rest,
-        ],
+        [1.0 - leaving * rest * rest * rest, 3.0 * leaving * rest * rest, -6.0 * leaving * rest],
         [
             at_start + factor * s * (k0 + s * (k1 / 2.0 + s * k2 / 3.0)),
             factor * (k0 + s * (k1 + s * k2)),

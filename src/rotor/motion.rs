@@ -131,9 +131,9 @@ mod tests {
             let dt = 1e-5;
             let [before, here, after] = [t - dt, t, t + dt].map(&motion);
             let rate = (before.orientation.reverse() * after.orientation).plane_angles() / (2.0 * dt);
-            assert!((rate - here.rate).length() < 2e-9, "{t}: {rate:?} and {:?}", here.rate);
+            assert!((rate - here.rate).length() < 1e-8, "{t}: {rate:?} and {:?}", here.rate);
             let change = (after.rate - before.rate) / (2.0 * dt);
-            assert!((change - here.acceleration).length() < 2e-8, "{t}: {change:?} and {here:?}");
+            assert!((change - here.acceleration).length() < 1e-7, "{t}: {change:?} and {here:?}");
         }
     }
 

@@ -317,7 +317,8 @@ impl Row {
     /// The acceleration does not jump where segment `before` gives way to segment `after`, at a key of the rate `rate` so far.
     fn inner(secs: &[f64], arcs: &[DVec3], before: usize, after: usize, rate: DVec3) -> Self {
         let (secs_before, secs_after) = (secs[before], secs[after]);
-        let right = 6.0 * (arcs[before] / (secs_before * secs_before) + arcs[after] / (secs_after * secs_after))
+        let right = 6.0
+            * (arcs[before] / (secs_before * secs_before) + arcs[after] / (secs_after * secs_after))
             - turning_term(arcs[before], inverse_jacobian(arcs[before]) * rate);
         Self {
             lower: jacobian(arcs[before]) * (2.0 / secs_before),
@@ -351,9 +352,7 @@ fn solve_open(secs: &[f64], arcs: &[DVec3], rates: &[DVec3], [start, end]: [EndR
     let n = secs.len();
     let row = |key: usize| match key {
         0 if start == EndRate::Natural => Row::natural_start(secs[0], arcs[0]),
-        key if key == n && end == EndRate::Natural => {
-            Row::natural_end(secs[n - 1], arcs[n - 1], rates[n])
-        }
+        key if key == n && end == EndRate::Natural => Row::natural_end(secs[n - 1], arcs[n - 1], rates[n]),
         // Known rates stand in the guess.
         key if key == 0 || key == n => Row::known(rates[key]),
         key => Row::inner(secs, arcs, key - 1, key, rates[key]),
@@ -383,8 +382,8 @@ fn solve_loop(secs: &[f64], arcs: &[DVec3], rates: &[DVec3]) -> Vec<DVec3> {
     let n = secs.len();
     // For each inner key, `rate = constant − factor · rate of the next − seam · rate at the seam`.
     let mut eliminated: Vec<(DMat3, DMat3, DVec3)> = Vec::with_capacity(n);
-    for key in 1..n {
-        let Row { lower, diagonal, upper, right } = Row::inner(secs, arcs, key - 1, key, rates[key]);
+    for (key, &rate) in rates.iter().enumerate().take(n).skip(1) {
+        let Row { lower, diagonal, upper, right } = Row::inner(secs, arcs, key - 1, key, rate);
         let (pivot, seam, right) = match eliminated.last() {
             None => (diagonal, lower, right),
             Some(&(factor, seam, constant)) => {

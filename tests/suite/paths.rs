@@ -1,19 +1,22 @@
 //! Paths between keys, spacing and meant turns: outside values, and what has to hold for every track.
 
 use std::f64::consts::{PI, TAU};
+use std::sync::Arc;
 
 use proptest::prelude::*;
 use serde_json::Value;
-use turnwright::clip::{MeantTurn, PathError, PathKind, Paths, RotationTrack, Spacing, SpacingError, Times};
+use turnwright::clip::{
+    self, Clip, FrameGrid, JointTracks, MeantTurn, PathError, PathKind, Paths, RotationTrack, Spacing,
+    SpacingError, Times,
+};
 use turnwright::rotor::{
     Axis, BSplineEnds, Bivector, EndRates, Motion, RotationBSpline, RotationSpline, Rotor, b_spline,
     hermite_motion,
 };
+use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use crate::strategies::{unit_rotor, unit_vector};
-use crate::support::{
-    Tally, assert_close, list, number, numbers, shared_json, unit_rotor as read_rotor,
-};
+use crate::support::{Tally, assert_close, list, number, numbers, shared_json, unit_rotor as read_rotor};
 
 const SMOOTH: [PathKind; 3] = [PathKind::Squad, PathKind::Spline, PathKind::BSpline];
 
@@ -157,7 +160,8 @@ fn worked_examples_of_the_methods_page() {
 
     let check = &checks["gltf_cubic"];
     let secs = number(&check["td"]);
-    let mut cubic = track(&[0.0, secs], &[read_rotor(&check["v0"]), read_rotor(&check["v1"])], PathKind::Cubic);
+    let mut cubic =
+        track(&[0.0, secs], &[read_rotor(&check["v0"]), read_rotor(&check["v1"])], PathKind::Cubic);
     let tangent = |name: &str| Rotor::from_xyzw(numbers(&check[name]));
     cubic.tangents = Some([[tangent("b0"); 2], [tangent("a1"); 2]].into());
     assert_close!(cubic.at(0.25 * secs), read_rotor(&check["unit_0.25"]), 1e-9);
@@ -225,9 +229,12 @@ fn spacing() -> impl Strategy<Value = Spacing> {
 fn turn() -> impl Strategy<Value = MeantTurn> {
     prop_oneof![
         Just(MeantTurn::SHORT),
-        (-3..=3_i32).prop_map(|whole| MeantTurn::new(whole).unwrap()),
-        (-2..=2_i32, unit_vector())
-            .prop_map(|(whole, axis)| MeantTurn::in_plane(whole, Bivector::from_axis(axis)).unwrap()),
+        (-3..=3_i32).prop_map(|whole| MeantTurn::new(whole).expect("allowed")),
+        (-2..=2_i32, unit_vector()).prop_map(|(whole, axis)| MeantTurn::in_plane(
+            whole,
+            Bivector::from_axis(axis)
+        )
+        .expect("allowed")),
     ]
 }
 
@@ -246,10 +253,10 @@ fn mixed_track() -> impl Strategy<Value = RotationTrack> {
         |((times, keys), each, ends)| {
             let mut own = track(&times, &keys, PathKind::Slerp).with_ends(ends);
             for (segment, (kind, spacing, turn)) in each.into_iter().enumerate().take(keys.len() - 1) {
-                own = own.with_path(segment..segment + 1, kind).unwrap();
-                own = own.with_spacing(segment..segment + 1, spacing).unwrap();
+                own = own.with_path(segment..segment + 1, kind).expect("allowed");
+                own = own.with_spacing(segment..segment + 1, spacing).expect("allowed");
                 if kind.takes_turns() {
-                    own = own.with_turn(segment, turn).unwrap();
+                    own = own.with_turn(segment, turn).expect("allowed");
                 }
             }
             own
@@ -469,7 +476,8 @@ fn a_wheel_that_comes_back_to_its_pose_turns_in_the_plane_that_is_named() {
     assert!((turned_about_z(&own, 0.0, 2.0) - 1080.0).abs() < 1e-2);
     assert_close!(own.at(2.0), wobble, 1e-15);
     // Without a plane, and without a short way: that of the segment beside it.
-    let own = track(&[0.0, 1.0, 2.0], &[Rotor::IDENTITY, Axis::Y.rotor(0.5), Axis::Y.rotor(0.5)], PathKind::Slerp);
+    let own =
+        track(&[0.0, 1.0, 2.0], &[Rotor::IDENTITY, Axis::Y.rotor(0.5), Axis::Y.rotor(0.5)], PathKind::Slerp);
     let own = own.with_turn(1, MeantTurn::new(1).unwrap()).unwrap();
     assert_close!(own.at(1.25), Axis::Y.rotor(0.5 + 0.25 * TAU), 1e-12);
 }
@@ -481,7 +489,10 @@ fn what_no_path_can_do_is_told() {
     assert_eq!(error.to_string(), "expected a path that can go round otherwise, found hold in segment 0");
     let error = own.with_path(1..2, PathKind::Slerp).unwrap_err();
     assert_eq!(error.to_string(), "expected segments below 1, found 1");
-    assert_eq!(MeantTurn::new(1001).unwrap_err().to_string(), "expected at most 1000 whole turns, found 1001");
+    assert_eq!(
+        MeantTurn::new(1001).unwrap_err().to_string(),
+        "expected at most 1000 whole turns, found 1001"
+    );
     assert!(matches!(MeantTurn::in_plane(1, Bivector::ZERO), Err(PathError::NoPlane { .. })));
     assert!(matches!(own.with_key_at(1.0), Err(PathError::NoTimeBetween { .. })));
     assert!(matches!(own.without_keys(&[0, 1]), Err(PathError::NoSuchKey { .. })));
@@ -528,7 +539,8 @@ fn half_turns_have_a_way_in_every_kind() {
 
 #[test]
 fn ends_do_what_they_say() {
-    let keys = [0.3, 1.1, -0.4, 0.9].map(|angle| Rotor::from_plane_angles(Bivector::new(angle, 1.0 - angle, angle * angle)));
+    let keys = [0.3, 1.1, -0.4, 0.9]
+        .map(|angle| Rotor::from_plane_angles(Bivector::new(angle, 1.0 - angle, angle * angle)));
     let times = [0.0, 0.4, 1.5, 2.0];
     let own = track(&times, &keys, PathKind::Spline);
     let natural = own.with_ends(EndRates::Natural);
@@ -581,4 +593,61 @@ fn keys_taken_out_leave_meant_turns() {
     let more = wheel.with_key_at(0.3).unwrap();
     assert!((turned_about_z(&more, 0.0, 0.3) - 243.0).abs() < 1e-6);
     assert!((turned_about_z(&more, 0.0, 2.0) - 900.5).abs() < 1e-6);
+}
+
+/// A clip of one joint, counted at a rate.
+fn clip_of(track: RotationTrack, rate: f64) -> Clip {
+    let joint = Joint {
+        name: "Wheel".to_owned(),
+        number: 0,
+        parent: None,
+        rest: Transform::IDENTITY,
+        kind: JointKind::Joint,
+        tips: vec![],
+    };
+    let duration_secs = track.times.span().expect("some keys").1;
+    Clip {
+        name: String::new(),
+        skeleton: Arc::new(Skeleton::new(vec![joint]).expect("one joint")),
+        joints: vec![Arc::new(JointTracks { rotation: Some(track), ..JointTracks::default() })],
+        grid: FrameGrid::even(rate, duration_secs),
+        duration_secs,
+    }
+}
+
+/// A wheel: eased in, some turns, the other way, and a plain end.
+fn wheel(path: PathKind) -> RotationTrack {
+    track(&[0.0, 1.0, 2.0, 3.0], &[0.0, 50.0, 100.0, 130.0].map(about_z), path)
+        .with_turn(0, MeantTurn::new(3).expect("allowed"))
+        .expect("allowed")
+        .with_turn(1, MeantTurn::OTHER_WAY)
+        .expect("allowed")
+        .with_spacing(0..1, Spacing::EaseIn)
+        .expect("allowed")
+}
+
+#[test]
+fn cutting_and_another_rate_keep_meant_turns() {
+    for path in [PathKind::Slerp, PathKind::Squad] {
+        let clip = clip_of(wheel(path), 30.0);
+        let whole = turned_about_z(clip.rotation(0).unwrap(), 0.0, 3.0);
+        assert!((whole - (1130.0 - 310.0 + 30.0)).abs() < 1e-6);
+        // At 2 and at 4 frames a second a step is far more than half a turn.
+        for rate in [2.0, 4.0, 60.0] {
+            let fine = clip::resampled(&clip, rate, 0.0, 3.0);
+            let found = turned_about_z(fine.rotation(0).unwrap(), 0.0, 3.0);
+            assert!((found - whole).abs() < 1e-6, "{path:?} at {rate}: {found} of {whole}");
+        }
+        let part = clip::cut(&clip, 0.3, 1.4);
+        let track = part.rotation(0).unwrap();
+        let expected = turned_about_z(clip.rotation(0).unwrap(), 0.3, 1.4);
+        let found = turned_about_z(track, 0.0, 1.1);
+        assert!((found - expected).abs() < 1e-6, "{path:?}: {found} of {expected}");
+        if path == PathKind::Slerp {
+            for step in 0..=110 {
+                let time = f64::from(step) / 100.0;
+                assert_close!(track.at(time), clip.rotation(0).unwrap().at(time + 0.3), 1e-9, "{time}");
+            }
+        }
+    }
 }

@@ -227,6 +227,17 @@ impl RotationTrack {
         (0..self.segment_count()).map(|own| self.segments.of(own)).collect()
     }
 
+    /// [`RotationTrack::sound_key`] of every key.
+    pub(super) fn sound_keys(&self) -> Vec<Rotor> {
+        let sound = self.keys.sound();
+        (0..sound.len())
+            .map(|key| {
+                let [s, yz, zx, xy] = sound.get(key);
+                Rotor::new(s, yz, zx, xy)
+            })
+            .collect()
+    }
+
     /// The keys with signs that follow one another.
     fn unrolled_keys(&self) -> Vec<Rotor> {
         let mut last = Rotor::IDENTITY;
@@ -246,9 +257,7 @@ impl RotationTrack {
             _ if last == 0 => Bivector::ZERO,
             0 => mean(0),
             key if key == last => mean(last - 1),
-            key => {
-                parabola_rate(keys[key - 1], keys[key], keys[key + 1], secs(key - 1), secs(key))
-            }
+            key => parabola_rate(keys[key - 1], keys[key], keys[key + 1], secs(key - 1), secs(key)),
         };
         keys[key] * Rotor::from_parts(0.0, rate * -0.5)
     }
@@ -319,7 +328,8 @@ impl Stored {
             Self::Rotors => Self::Rotors,
             Self::Angles(angles) => {
                 let mut degrees = angles.degrees.to_vec();
-                let before = degrees[at - 1].map(|angle| if angle.is_finite() { angle.to_radians() } else { 0.0 });
+                let before =
+                    degrees[at - 1].map(|angle| if angle.is_finite() { angle.to_radians() } else { 0.0 });
                 let triple = angles.order.from_rotor(rotor.normalize(), before[2]);
                 degrees.insert(at, angles.order.nearest_equal(triple, before).map(f64::to_degrees));
                 Self::Angles(FileAngles { degrees: degrees.into(), ..angles.clone() })

@@ -50,8 +50,10 @@ impl Lead {
 
     /// With rate and acceleration by the share.
     pub(super) fn motion(&self, share: f64) -> Motion {
-        let short =
-            Motion { rate: self.short, ..Motion::still(self.start * Rotor::from_plane_angles(self.short * share)) };
+        let short = Motion {
+            rate: self.short,
+            ..Motion::still(self.start * Rotor::from_plane_angles(self.short * share))
+        };
         if self.spin == Bivector::ZERO {
             return short;
         }

@@ -30,7 +30,10 @@ impl RotationTrack {
             PathKind::Hold => return peak(0.0, 0.0),
             PathKind::Slerp if own.turn.plane().is_none() => {
                 let (steepest, share) = own.spacing.steepest();
-                return peak(share, self.path_motion(segment, 0.0, None).rate.length() / (end - start) * steepest);
+                return peak(
+                    share,
+                    self.path_motion(segment, 0.0, None).rate.length() / (end - start) * steepest,
+                );
             }
             _ => {}
         }
@@ -39,8 +42,7 @@ impl RotationTrack {
         let (best, _) = (0..=samples)
             .map(|sample| (sample, rate(share_of(sample))))
             .fold((0, f64::NEG_INFINITY), |best, own| if own.1 > best.1 { own } else { best });
-        let (mut low, mut high) =
-            (share_of(best.saturating_sub(1)), share_of((best + 1).min(samples)));
+        let (mut low, mut high) = (share_of(best.saturating_sub(1)), share_of((best + 1).min(samples)));
         // Golden section (Kiefer 1953).
         let golden = (5.0_f64.sqrt() - 1.0) / 2.0;
         for _ in 0..40 {

@@ -182,12 +182,7 @@ impl RotationTrack {
         let parts = [self.keys[key], tangents[key][1], self.keys[key + 1], tangents[key + 1][0]];
         let (t2, t3) = (t * t, t * t * t);
         let weights = [
-            [
-                2.0 * t3 - 3.0 * t2 + 1.0,
-                secs * (t3 - 2.0 * t2 + t),
-                3.0 * t2 - 2.0 * t3,
-                secs * (t3 - t2),
-            ],
+            [2.0 * t3 - 3.0 * t2 + 1.0, secs * (t3 - 2.0 * t2 + t), 3.0 * t2 - 2.0 * t3, secs * (t3 - t2)],
             [
                 6.0 * t2 - 6.0 * t,
                 secs * (3.0 * t2 - 4.0 * t + 1.0),
@@ -299,8 +294,7 @@ impl RotationTrack {
         let secs = (self.times.at(segment + 1) - self.times.at(segment)) / lead.pieces as f64;
         let before = lead.point(lead.pieces - 1);
         // Across the seam the step counts, as the last key stands for the first.
-        let before =
-            if is_seam { a * (lead.point(lead.pieces).reverse() * before) } else { before };
+        let before = if is_seam { a * (lead.point(lead.pieces).reverse() * before) } else { before };
         let is_last = lead.pieces == 1
             && match segment.checked_sub(1) {
                 Some(other) => self.kind_of(other, path) == PathKind::Hold,
@@ -392,11 +386,7 @@ fn rate_at_key([before, key, after]: [Rotor; 3], secs: [f64; 2], is_alone: [bool
     let share = sides.fold(1.0_f64, |share, ((step, secs), is_alone)| {
         // |share · rate · secs − step| ≤ most, where twice the pull stands on the left.
         let most = MARGIN * (TAU - step.length()) * if is_alone { 2.0 } else { 1.0 };
-        let (a, b, c) = (
-            rate.dot(rate) * secs * secs,
-            rate.dot(step) * secs,
-            step.dot(step) - most * most,
-        );
+        let (a, b, c) = (rate.dot(rate) * secs * secs, rate.dot(step) * secs, step.dot(step) - most * most);
         if a == 0.0 {
             return share;
         }

@@ -105,7 +105,8 @@ fn curve(
         let lead = track.lead(segment, |key| keys[key]);
         times.push(start);
         points.push(keys[segment]);
-        let is_half = lead.pieces == 1 && keys[segment].turn_to(keys[segment + 1]) > PI - HALF_TURN_MARGIN_RAD;
+        let is_half =
+            lead.pieces == 1 && keys[segment].turn_to(keys[segment + 1]) > PI - HALF_TURN_MARGIN_RAD;
         let pieces = if is_half { 2 } else { lead.pieces };
         for piece in 1..pieces {
             let share = piece as f64 / pieces as f64;
@@ -233,6 +234,6 @@ fn is_same(own: &RotationTrack, kept: &RotationTrack) -> bool {
         && same_paths
         && same_tangents
         && same_segments
-        && std::ptr::eq(&raw const own.keys[..], &raw const kept.keys[..])
+        && std::ptr::eq::<[Rotor]>(&raw const *own.keys, &raw const *kept.keys)
         && own.segments.ends() == kept.segments.ends()
 }
