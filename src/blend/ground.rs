@@ -36,6 +36,13 @@ impl GroundMove {
         Self { x: 0.0, z: 0.0, ..self }.apply(direction)
     }
 
+    /// Both moves in one: `next` first, then this one. A stride repeated is the stride then the stride.
+    #[must_use]
+    pub fn then(self, next: Self) -> Self {
+        let shift = self.apply(DVec3::new(next.x, 0.0, next.z));
+        Self { turn_rad: self.turn_rad + next.turn_rad, x: shift.x, z: shift.z }
+    }
+
     fn to_affine(self) -> DAffine3 {
         DAffine3::from_mat3_translation(
             DMat3::from_rotation_y(self.turn_rad),

@@ -14,6 +14,7 @@ mod join;
 mod mask;
 mod mix;
 mod registration;
+mod repeat;
 mod warp;
 
 pub use add::{Reference, Side, add};
@@ -24,5 +25,6 @@ pub use ground::{GroundMove, moved};
 pub use join::{JoinPlace, best_places, join, join_distances};
 pub use mask::Mask;
 pub use mix::{AlignedMix, MixAlong, RootFrom, mix, mix_aligned, mix_many};
-pub use registration::{Registration, align};
+pub use registration::{Registration, Stop, align};
+pub use repeat::{repeat, stride};
 pub use warp::{WarpPath, time_warp};

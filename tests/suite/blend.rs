@@ -8,7 +8,7 @@ use std::sync::Arc;
 use glam::DVec3;
 use turnwright::blend::{
     self, AlignedMix, BlendError, GroundMove, JoinPlace, Mask, MixAlong, Reference, RootFrom, Side, add,
-    align, fit, join, join_distances, mix, mix_aligned, mix_many, moved,
+    align, fit, join, join_distances, mix, mix_aligned, mix_many, moved, repeat, stride,
 };
 use turnwright::clip::{
     Clip, ContactOptions, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack, contacts, slides,
@@ -447,4 +447,42 @@ fn a_scene_keeps_a_blend() {
     let text = ron::to_text(Path::new("/a/night.ron"), &document, &label).unwrap();
     let back = ron::from_text(Path::new("/a/night.ron"), &text).unwrap().document;
     assert_eq!(back.works[0].passes, document.works[0].passes, "{text}");
+}
+
+#[test]
+fn a_repeated_walk_walks_on() {
+    let Some(walk) = clip("data/gltf/biped23_movement_clips.glb", "Walking_A") else { return };
+    // Given a stride, as a captured walk has it.
+    let top = walk.skeleton.listed().next().unwrap();
+    let count = walk.grid.count();
+    let step = GroundMove { turn_rad: 0.3, x: 0.2, z: 0.9 };
+    let times = Times::Even { step_secs: 1.0 / walk.grid.rate, count };
+    let secs: Vec<f64> = times.iter().collect();
+    let closes = walk.rotations_at(top, &secs)[0].turn_to(walk.rotations_at(top, &secs)[count - 1]);
+    assert!(closes < 0.02, "the clip is a loop: {closes}");
+    let walking = moved(&walk, step);
+    let share = |frame: usize| frame as f64 / (count - 1) as f64;
+    let strides = mix(
+        &walk,
+        &walking,
+        &MixAlong { knots: vec![[0.0, 0.0], [walk.duration_secs, 1.0]] },
+        &Mask::all(&walk.skeleton),
+    )
+    .unwrap();
+    assert_eq!(share(count - 1), 1.0);
+    let found = stride(&strides).unwrap();
+    let thrice = repeat(&strides, 3).unwrap();
+    assert_eq!(thrice.grid.count(), 3 * (strides.grid.count() - 1) + 1);
+    let length = strides.grid.time(strides.grid.count() - 1);
+    for joint in walk.skeleton.listed() {
+        for frame in 0..strides.grid.count() - 1 {
+            let secs = strides.grid.time(frame);
+            let first = strides.world_at(secs)[joint].position();
+            let second = thrice.world_at(secs + length)[joint].position();
+            assert_close!(second, found.apply(first), 1e-6, "{joint} {frame}");
+            let third = thrice.world_at(secs + 2.0 * length)[joint].position();
+            assert_close!(third, found.apply(found.apply(first)), 1e-6, "{joint} {frame}");
+        }
+    }
+    assert_eq!(repeat(&strides, 1).unwrap(), strides);
 }
