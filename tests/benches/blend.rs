@@ -89,7 +89,7 @@ fn benches(criterion: &mut Criterion) {
 
 criterion_group! {
     name = all;
-    config = Criterion::default().with_measurement(CpuTime);
+    config = criterion::Criterion::default().with_measurement(CpuTime);
     targets = benches
 }
 criterion_main!(all);
