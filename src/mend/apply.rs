@@ -6,7 +6,7 @@ use crate::clip::{Clip, RotationTrack};
 use crate::snag::{Remedy, Snag};
 
 use super::draft::Draft;
-use super::{MendError, numbers, redraw, take_out};
+use super::{MendError, numbers, redraw, stuck, take_out};
 
 /// `clip` with one snag mended. The same snag in the same clip always gives the same numbers; joints other than the
 /// snag's stay shared, and so does its own when there is nothing to do ([`Remedy::Ask`]).
@@ -23,26 +23,39 @@ pub fn apply(clip: &Clip, snag: &Snag) -> Result<Clip, MendError> {
 /// # Errors
 /// When one of the snags does not fit the clip.
 pub fn apply_all(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
+    let mut mended = clip.clone();
     let mut drafts: BTreeMap<usize, Draft> = BTreeMap::new();
     for snag in snags {
+        if asks_others(snag) {
+            // It sees what the mends before it made of the other joints.
+            for (joint, draft) in drafts.extract_if(.., |joint, _| *joint != snag.joint) {
+                mended = finished(mended, joint, draft);
+            }
+        }
         let draft = match drafts.entry(snag.joint) {
             std::collections::btree_map::Entry::Occupied(entry) => entry.into_mut(),
-            std::collections::btree_map::Entry::Vacant(entry) => entry.insert(draft_of(clip, snag.joint)?),
+            std::collections::btree_map::Entry::Vacant(entry) => entry.insert(draft_of(&mended, snag.joint)?),
         };
         let label = || clip.skeleton.label(snag.joint).to_owned();
         if snag.first_key > snag.last_key || snag.last_key >= draft.len() {
             let key = snag.first_key.max(snag.last_key);
             return Err(MendError::NoSuchKey { joint: label(), count: draft.len(), key });
         }
-        mend(draft, snag);
+        mend(draft, &mended, snag);
     }
-    let mut mended = clip.clone();
-    for (joint, draft) in drafts {
-        if let Some(track) = draft.finish() {
-            mended = mended.with_rotation(joint, track);
-        }
+    Ok(drafts.into_iter().fold(mended, |mended, (joint, draft)| finished(mended, joint, draft)))
+}
+
+/// Whether the mend of a snag depends on what other joints do.
+pub(super) fn asks_others(snag: &Snag) -> bool {
+    matches!(snag.remedy, Remedy::FromOthers)
+}
+
+fn finished(clip: Clip, joint: usize, draft: Draft) -> Clip {
+    match draft.finish() {
+        Some(track) => clip.with_rotation(joint, track),
+        None => clip,
     }
-    Ok(mended)
 }
 
 fn draft_of(clip: &Clip, joint: usize) -> Result<Draft, MendError> {
@@ -56,8 +69,8 @@ fn draft_of(clip: &Clip, joint: usize) -> Result<Draft, MendError> {
     })
 }
 
-/// Mends one snag whose keys exist in the draft.
-pub(super) fn mend(draft: &mut Draft, snag: &Snag) {
+/// Mends one snag whose keys exist in the draft. `clip` is what the other joints do.
+pub(super) fn mend(draft: &mut Draft, clip: &Clip, snag: &Snag) {
     let (first, last) = (snag.first_key, snag.last_key);
     match snag.remedy {
         Remedy::Normalise => numbers::normalise(draft, first..=last),
@@ -65,6 +78,7 @@ pub(super) fn mend(draft: &mut Draft, snag: &Snag) {
         Remedy::Unwrap(turns) => numbers::unwrap(draft, first..=last, turns),
         Remedy::NearestAngles => numbers::nearest(draft, first, last),
         Remedy::Redraw => redraw::redraw(draft, first, last),
+        Remedy::FromOthers => stuck::redraw_from_others(draft, clip, snag.joint, first, last),
         Remedy::ShortWay => numbers::short_way(draft, last),
         Remedy::TakeOut(offset) => take_out::take_out(draft, first, last, |pose| pose * offset),
         Remedy::TakeOutAbove(offset) => take_out::take_out(draft, first, last, |pose| offset * pose),

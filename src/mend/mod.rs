@@ -4,8 +4,11 @@ mod apply;
 mod draft;
 mod error;
 mod numbers;
+mod others;
 mod plant;
 mod redraw;
+mod regress;
+mod stuck;
 mod survey;
 mod take_out;
 

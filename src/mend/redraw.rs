@@ -31,13 +31,19 @@ pub(super) fn redraw(draft: &mut Draft, first: usize, last: usize) {
         }
         (None, None) => vec![Rotor::IDENTITY; last + 1 - first],
     };
-    let mut played = left.or(right).and_then(|key| draft.unit(key)).unwrap_or(Rotor::IDENTITY);
-    for (key, pose) in (first..=last).zip(poses) {
+    write(draft, first, &poses);
+}
+
+/// Writes other poses from key `first` on, with the tangents that follow from them where the track has such.
+pub(super) fn write(draft: &mut Draft, first: usize, poses: &[Rotor]) {
+    let near = draft.sound_before(first).or_else(|| draft.sound_after(first));
+    let mut played = near.and_then(|key| draft.unit(key)).unwrap_or(Rotor::IDENTITY);
+    for (key, pose) in (first..).zip(poses) {
         played = draft.unit(key).unwrap_or(played);
-        draft.set_pose(key, pose, played);
+        draft.set_pose(key, *pose, played);
     }
     if draft.tangents.is_some() {
-        for key in first..=last {
+        for key in first..first + poses.len() {
             let tangent = tangent(draft, key);
             draft.set_numbers(key, draft.keys[key], Some([tangent; 2]));
         }
@@ -108,14 +114,15 @@ fn best_fit(draft: &Draft, left: usize, right: usize) -> (usize, f64) {
 }
 
 /// A cubic in the plane angles against the left end, with fitted rates at both ends.
-struct Hermite {
+pub(super) struct Hermite {
     from: Rotor,
     to: Bivector,
     slopes: [Bivector; 2],
 }
 
 impl Hermite {
-    fn new(draft: &Draft, left: usize, right: usize, fit: usize) -> Option<Self> {
+    /// Rates are fitted over `fit` keys on each side. `None` where there are none, or the way across has no sure side.
+    pub(super) fn new(draft: &Draft, left: usize, right: usize, fit: usize) -> Option<Self> {
         let (a, b) = (draft.unit(left)?, draft.unit(right)?);
         let secs = draft.secs(right) - draft.secs(left);
         let to = (a.reverse() * b).plane_angles();
@@ -134,7 +141,8 @@ impl Hermite {
         Some(Self { from: a, to, slopes: [rate_left * secs, slope_right * secs] })
     }
 
-    fn at(&self, t: f64) -> Rotor {
+    /// At a share of the way, 0 to 1.
+    pub(super) fn at(&self, t: f64) -> Rotor {
         let (t2, t3) = (t * t, t * t * t);
         let angles = self.slopes[0] * (t3 - 2.0 * t2 + t)
             + self.to * (3.0 * t2 - 2.0 * t3)

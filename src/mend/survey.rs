@@ -8,7 +8,7 @@ use rayon::prelude::*;
 use crate::clip::{Clip, RotationTrack};
 use crate::snag::{Cancelled, Progress, Remedy, Snag, SnagKind, find};
 
-use super::apply::{change_of_keys_rad, mend};
+use super::apply::{asks_others, change_of_keys_rad, mend};
 use super::draft::Draft;
 
 /// What to look for.
@@ -69,7 +69,11 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
         if stopped.load(Ordering::Relaxed) {
             return Err(Cancelled);
         }
-        for (joint, outcome) in outcomes.into_iter().enumerate() {
+        for (joint, mut outcome) in outcomes.into_iter().enumerate() {
+            if !outcome.asking.is_empty() {
+                // One after the other: each sees what the mends before it made of the other joints.
+                outcome = mended(&working, joint, outcome.asking);
+            }
             found.extend(outcome.snags);
             if let Some(track) = outcome.mended {
                 working = working.with_rotation(joint, track);
@@ -100,21 +104,33 @@ struct JointOutcome {
     /// Each with the change of its mend in radians.
     snags: Vec<(Snag, f64)>,
     mended: Option<RotationTrack>,
+    /// Found, and mended when it is this joint's turn, since what other joints do matters.
+    asking: Vec<Snag>,
 }
 
 fn one_joint(clip: &Clip, joint: usize, kind: SnagKind) -> JointOutcome {
     let snags = find(clip, joint, kind);
+    if snags.iter().any(asks_others) {
+        return JointOutcome { asking: snags, ..JointOutcome::default() };
+    }
+    mended(clip, joint, snags)
+}
+
+/// The snags of a joint with the changes of their mends, and its track after them.
+fn mended(clip: &Clip, joint: usize, snags: Vec<Snag>) -> JointOutcome {
     let Some(track) = clip.rotation(joint).filter(|_| !snags.is_empty()) else {
         return JointOutcome::default();
     };
+    let kind = snags[0].kind;
     if snags.iter().all(|snag| snag.remedy == Remedy::Ask) {
-        return JointOutcome { snags: snags.into_iter().map(|snag| (snag, 0.0)).collect(), mended: None };
+        let snags = snags.into_iter().map(|snag| (snag, 0.0)).collect();
+        return JointOutcome { snags, ..JointOutcome::default() };
     }
     let mut draft = Draft::new(track);
     let mut snags: Vec<(Snag, f64)> = snags
         .into_iter()
         .map(|snag| {
-            mend(&mut draft, &snag);
+            mend(&mut draft, clip, &snag);
             (snag, draft.take_change())
         })
         .collect();
@@ -125,5 +141,5 @@ fn one_joint(clip: &Clip, joint: usize, kind: SnagKind) -> JointOutcome {
             *change = change_of_keys_rad(track, mended, snag.first_key, snag.last_key);
         }
     }
-    JointOutcome { snags, mended }
+    JointOutcome { snags, mended, asking: Vec::new() }
 }

@@ -2,7 +2,9 @@
 
 use crate::clip::Clip;
 
-use super::{Snag, SnagKind, broken_value, half_turn, long_way, mirrored_angles, sign_flip, spike, wrap};
+use super::{
+    Snag, SnagKind, broken_value, half_turn, long_way, mirrored_angles, sign_flip, spike, stuck, wrap,
+};
 
 /// Finds the snags of one kind in one joint of `clip` as it is, in the order of their keys.
 ///
@@ -17,6 +19,7 @@ pub fn find(clip: &Clip, joint: usize, kind: SnagKind) -> Vec<Snag> {
         SnagKind::LongWay => long_way::find(clip, joint),
         SnagKind::HalfTurn => half_turn::find(clip, joint),
         SnagKind::Spike => spike::find(clip, joint),
+        SnagKind::Stuck => stuck::find(clip, joint),
     };
     snags.sort_by_key(|snag| (snag.first_key, snag.last_key));
     snags

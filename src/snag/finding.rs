@@ -17,6 +17,8 @@ pub enum Remedy {
     NearestAngles,
     /// Draws the keys anew from the sound motion on both sides.
     Redraw,
+    /// Draws the keys anew from the sound motion on both sides and from what the other joints do meanwhile.
+    FromOthers,
     /// Makes the segment between the two keys take the short way.
     ShortWay,
     /// Multiplies each key by this turn on the bone side, `q ← q · offset`, and blends the seams.

@@ -21,11 +21,13 @@ pub enum SnagKind {
     HalfTurn,
     /// One to a few frames lie far off the motion around them.
     Spike,
+    /// A joint stands perfectly still inside its motion.
+    Stuck,
 }
 
 impl SnagKind {
     /// All kinds, in mending order.
-    pub const ALL: [Self; 7] = [
+    pub const ALL: [Self; 8] = [
         Self::BrokenValue,
         Self::SignFlip,
         Self::Wrap,
@@ -33,6 +35,7 @@ impl SnagKind {
         Self::LongWay,
         Self::HalfTurn,
         Self::Spike,
+        Self::Stuck,
     ];
 
     /// The name in files, on the command line and on screen.
@@ -45,6 +48,7 @@ impl SnagKind {
             Self::LongWay => "long-way",
             Self::HalfTurn => "half-turn",
             Self::Spike => "spike",
+            Self::Stuck => "stuck",
         }
     }
 
@@ -58,6 +62,7 @@ impl SnagKind {
             Self::LongWay => 'L',
             Self::HalfTurn => 'H',
             Self::Spike => 'S',
+            Self::Stuck => 'K',
         }
     }
 
@@ -75,6 +80,9 @@ impl SnagKind {
             Self::LongWay => "Played as stored, the joint takes the long way round between two keys.",
             Self::HalfTurn => "For a run of frames the joint sits about half a turn off its neighbours.",
             Self::Spike => "One or a few frames lie far off the motion around them.",
+            Self::Stuck => {
+                "The joint stands perfectly still for a while inside its motion: its signal dropped out."
+            }
         }
     }
 
@@ -90,6 +98,9 @@ impl SnagKind {
             Self::LongWay => "Takes the short way between the two keys.",
             Self::HalfTurn => "Takes the half turn out of the run and blends its seams.",
             Self::Spike => "Draws the frames anew from the sound motion on both sides.",
+            Self::Stuck => {
+                "Draws the frames anew from the motion on both sides and from what the other joints do meanwhile."
+            }
         }
     }
 }

@@ -16,6 +16,7 @@ mod scan;
 mod seam;
 mod sign_flip;
 mod spike;
+mod stuck;
 mod wrap;
 
 pub use find::find;

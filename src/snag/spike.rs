@@ -7,6 +7,7 @@ use crate::rotor::{Rotor, slerp};
 
 use super::roughness::{Roughness, angle_to_way};
 use super::scan::{Finding, Scan};
+use super::stuck::is_same;
 use super::{Remedy, Snag, SnagKind};
 
 /// With fewer keys nothing can be said about what is usual.
@@ -217,6 +218,7 @@ fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Op
     if run.first <= START_KEYS
         || run.last + END_KEYS >= rough.len()
         || (run.first - 1..=run.last).any(|key| !scan.moves_after(key))
+        || is_rest(rough, run)
     {
         return None;
     }
@@ -247,6 +249,11 @@ fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Op
                     * (run.last + 2 - run.first) as f64,
             );
     is_spike.then(|| 1.0 - 0.5 * (LEAST_PRODUCT / (score * gain)).sqrt())
+}
+
+/// Whether the keys of a run do no more than repeat the one before them: the joint is stuck there.
+fn is_rest(rough: &Roughness, run: Run) -> bool {
+    run.last > run.first && (run.first..=run.last).all(|key| is_same(rough.poses[key - 1], rough.poses[key]))
 }
 
 /// From this confidence on a spike may be mended unasked.

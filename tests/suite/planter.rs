@@ -153,6 +153,36 @@ fn half_turn(axis: DVec3) -> Rotor {
     Rotor::from_plane_angles(Bivector::from_axis(axis * std::f64::consts::PI))
 }
 
+/// The kinds that last: planted by themselves, since many of them in one clip leave little to learn from.
+const LASTING: &[SnagKind] = &[SnagKind::Stuck];
+
+/// How far a joint moves in a stuck run at least, in degrees, to be seen standing still.
+const LEAST_MISSED_DEG: f64 = 1.5;
+
+/// How fast it is at both ends of the run at least, beside its usual rate: it would rest there by itself else.
+const LEAST_END_SHARE: f64 = 0.2;
+
+/// A run of 0.12 to 0.6 s in which the joint does move.
+fn moving_run(random: &mut Random, track: &RotationTrack) -> Option<(usize, usize)> {
+    let (count, step_secs) = (track.keys.len(), track.times.median_step()?);
+    let [least, most] = [0.12, 0.6].map(|secs: f64| ((secs / step_secs).round() as usize).max(3));
+    if count < least + 16 {
+        return None;
+    }
+    let steps: Vec<f64> =
+        (1..count).map(|key| track.sound_key(key - 1).turn_to(track.sound_key(key))).collect();
+    let usual = median(&steps);
+    (0..30).find_map(|_| {
+        let (first, last) = run(random, count, least, most.min(count / 3).max(least), 6);
+        let held = track.sound_key(first - 1);
+        let missed = (first..=last).map(|key| held.turn_to(track.sound_key(key))).fold(0.0, f64::max);
+        let step = |key: usize| track.sound_key(key - 1).turn_to(track.sound_key(key));
+        let slowest = [first - 1, first, last, last + 1].map(step).into_iter().fold(f64::INFINITY, f64::min);
+        let moves = slowest >= LEAST_END_SHARE * usual && missed.to_degrees() >= LEAST_MISSED_DEG;
+        moves.then_some((first, last))
+    })
+}
+
 /// A track with one fault, and where it is; `None` where the kind does not suit.
 fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Option<(RotationTrack, Planted)> {
     let track = clip.rotation(joint)?;
@@ -249,6 +279,19 @@ fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Opti
                 .collect();
             (with_poses(track, first, &off), planted((first, last)))
         }
+        SnagKind::Stuck => {
+            let (first, last) = moving_run(random, track)?;
+            let held = first - 1;
+            let broken = if let Stored::Angles(angles) = &track.stored {
+                track.with_angles(&(first..=last).map(|key| (key, angles.degrees[held])).collect::<Vec<_>>())
+            } else {
+                let mut keys = track.keys.to_vec();
+                let own = keys[held];
+                keys[first..=last].fill(own);
+                RotationTrack { keys: keys.into(), ..track.clone() }
+            };
+            (broken, planted((first, last)))
+        }
     })
 }
 
@@ -286,10 +329,12 @@ struct Table {
     scores: BTreeMap<SnagKind, Score>,
     missed: Vec<String>,
     wrong: Vec<String>,
+    /// Mean errors of each stuck run: mended, by slerp across, as it was.
+    runs: Vec<String>,
 }
 
-/// Plants into sound joints of a clip and scores what the survey makes of it.
-fn trial(ground: &Ground, seed: u64, table: &mut Table) {
+/// Plants into sound joints of a clip, and scores what the survey makes of it.
+fn trial(ground: &Ground, seed: u64, lasting: bool, table: &mut Table) {
     let mut random = Random::new(seed);
     let clip = &*ground.clip;
     let mut broken = clip.clone();
@@ -297,10 +342,10 @@ fn trial(ground: &Ground, seed: u64, table: &mut Table) {
     for joint in clip.skeleton.listed() {
         let Some(track) = clip.rotation(joint).filter(|track| track.keys.len() >= 16) else { continue };
         let is_sound = !ground.snags.iter().any(|snag| snag.joint == joint);
-        if !is_sound || random.unit() < 0.5 {
+        if !is_sound || random.unit() < if lasting { 0.8 } else { 0.5 } {
             continue;
         }
-        let kinds = kinds(track);
+        let kinds = if lasting { LASTING } else { kinds(track) };
         let kind = kinds[random.whole(0, kinds.len() - 1)];
         if let Some((track, planted)) = plant(&mut random, clip, joint, kind) {
             broken = broken.with_rotation(joint, track);
@@ -334,6 +379,7 @@ fn trial(ground: &Ground, seed: u64, table: &mut Table) {
         let [truth, was, mended] =
             [clip, &broken, &survey.mended].map(|clip| clip.rotation(planted.joint).unwrap());
         let ends = (planted.first - 1, planted.last + 1);
+        let before = score.mended.len();
         for key in planted.first..=planted.last {
             let error = |pose: Rotor| pose.turn_to(truth.sound_key(key)).to_degrees();
             score.mended.push(error(mended.sound_key(key)));
@@ -343,6 +389,11 @@ fn trial(ground: &Ground, seed: u64, table: &mut Table) {
                     / (truth.times.at(ends.1) - truth.times.at(ends.0));
                 score.slerp.push(error(slerp(truth.sound_key(ends.0), truth.sound_key(ends.1), share)));
             }
+        }
+        if planted.kind == SnagKind::Stuck {
+            let mean = |all: &[f64]| all[before..].iter().sum::<f64>() / (all.len() - before) as f64;
+            let errors = [&score.mended, &score.slerp, &score.was].map(|all| mean(all));
+            table.runs.push(format!("{} {label} {}: {errors:.3?}", ground.name, planted.kind));
         }
     }
     for snag in &survey.snags {
@@ -362,32 +413,43 @@ fn least_recall(kind: SnagKind, coarse: bool) -> f64 {
     match kind {
         SnagKind::Spike if coarse => 0.78,
         SnagKind::HalfTurn | SnagKind::Spike => 0.95,
+        SnagKind::Stuck if coarse => 0.87,
+        SnagKind::Stuck => 0.9,
         _ => 0.98,
     }
 }
 
-/// Errors after mending, in degrees: at most this in the median, and never worse than slerp across.
-fn most_error_deg(kind: SnagKind) -> f64 {
-    match kind {
+/// The median error after mending is at most this, in degrees; `slerp` is that of slerp across, and never beaten by it. In a loop
+/// of a few dozen frames there is too little to learn from what the other joints do.
+fn most_error_deg(kind: SnagKind, coarse: bool, slerp: f64) -> f64 {
+    let most: f64 = match kind {
         SnagKind::SignFlip | SnagKind::Wrap | SnagKind::MirroredAngles | SnagKind::LongWay => 1e-3,
+        SnagKind::Stuck if coarse => slerp,
+        SnagKind::Stuck => 0.6 * slerp,
         _ => 0.3,
-    }
+    };
+    most.min(slerp + 1e-6)
 }
 
 /// Plants into every clip of the files that `wanted` picks, with seeds from `seed` on.
-fn table(seed: u64, wanted: impl Fn(&Clip) -> bool) -> Option<(Table, f64, usize)> {
-    let mut table = Table { scores: BTreeMap::new(), missed: Vec::new(), wrong: Vec::new() };
+fn table(seed: u64, lasting: bool, wanted: impl Fn(&Clip) -> bool) -> Option<(Table, f64, usize)> {
+    let mut table =
+        Table { scores: BTreeMap::new(), missed: Vec::new(), wrong: Vec::new(), runs: Vec::new() };
     let (mut seed, mut minutes, mut clean_flags) = (seed, 0.0, 0);
     for file in FILES {
         for ground in
             grounds(file)?.iter().filter(|ground| ground.clip.grid.count() >= 16 && wanted(&ground.clip))
         {
             minutes += ground.clip.duration_secs / 60.0 * ground.clip.skeleton.listed().count() as f64;
-            let moving =
-                |snag: &&Snag| matches!(snag.kind, SnagKind::HalfTurn | SnagKind::Spike | SnagKind::LongWay);
+            let moving = |snag: &&Snag| {
+                matches!(
+                    snag.kind,
+                    SnagKind::HalfTurn | SnagKind::Spike | SnagKind::LongWay | SnagKind::Stuck
+                )
+            };
             clean_flags += ground.snags.iter().filter(moving).count();
             for _ in 0..if ground.clip.grid.count() > 60 { 6 } else { 3 } {
-                trial(ground, seed, &mut table);
+                trial(ground, seed, lasting, &mut table);
                 seed += 1;
             }
         }
@@ -402,6 +464,9 @@ fn check(name: &str, coarse: bool, (table, minutes, clean_flags): (Table, f64, u
         }
         for line in &table.wrong {
             println!("wrong {line}");
+        }
+        for line in &table.runs {
+            println!("run {line}");
         }
     }
     println!("{name}: {clean_flags} false flags in {minutes:.1} joint minutes of sound clips");
@@ -426,13 +491,11 @@ fn check(name: &str, coarse: bool, (table, minutes, clean_flags): (Table, f64, u
         let error = median(&score.mended);
         if recall < least_recall(*kind, coarse)
             || precision < LEAST_PRECISION
-            || error > most_error_deg(*kind)
-            || error > median(&score.slerp) + 1e-6
+            || error > most_error_deg(*kind, coarse, median(&score.slerp))
         {
             failures.push(kind.name());
         }
     }
-    assert!(table.scores.len() >= 5, "most kinds were planted");
     assert!(failures.is_empty(), "{name}: short of its goal: {failures:?}");
     assert!(clean_flags as f64 <= 0.2 * minutes, "{name}: too many false flags");
 }
@@ -440,13 +503,27 @@ fn check(name: &str, coarse: bool, (table, minutes, clean_flags): (Table, f64, u
 /// Captures and longer loops.
 #[test]
 fn planted_faults_are_found_and_mended() {
-    let Some(table) = table(1, |clip| clip.grid.count() > 60) else { return };
+    let Some(table) = table(1, false, |clip| clip.grid.count() > 60) else { return };
     check("captures", false, table);
 }
 
 /// Loops of 16 to 60 frames.
 #[test]
 fn planted_faults_in_short_loops_are_found_and_mended() {
-    let Some(table) = table(1001, |clip| clip.grid.count() <= 60) else { return };
+    let Some(table) = table(1001, false, |clip| clip.grid.count() <= 60) else { return };
     check("short loops", true, table);
+}
+
+/// What lasts a while, in captures.
+#[test]
+fn planted_faults_that_last_are_found_and_mended() {
+    let Some(table) = table(2001, true, |clip| clip.grid.count() > 60) else { return };
+    check("lasting, captures", false, table);
+}
+
+/// What lasts a while, in loops.
+#[test]
+fn planted_faults_that_last_in_short_loops_are_found_and_mended() {
+    let Some(table) = table(3001, true, |clip| clip.grid.count() <= 60) else { return };
+    check("lasting, short loops", true, table);
 }

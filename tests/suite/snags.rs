@@ -7,7 +7,7 @@ use serde_json::Value;
 use turnwright::clip::{Clip, FileAngles, FrameGrid, JointTracks, PathKind, Paths, RotationTrack, Times};
 use turnwright::exchange::{OpenOptions, open};
 use turnwright::mend::{self, Survey, SurveyOptions};
-use turnwright::rotor::{Axis, EulerOrder, Rotor};
+use turnwright::rotor::{Axis, EulerOrder, Rotor, slerp};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 use turnwright::snag::{Cancelled, Progress, Remedy, Snag, SnagKind, Unwatched};
 
@@ -466,7 +466,7 @@ const HONEST: [&str; 15] = [
 
 #[test]
 fn honest_fast_motion_is_left_alone() {
-    let moving = [SnagKind::LongWay, SnagKind::HalfTurn, SnagKind::Spike];
+    let moving = [SnagKind::LongWay, SnagKind::HalfTurn, SnagKind::Spike, SnagKind::Stuck];
     let mut wrong = Vec::new();
     let (mut minutes, mut untouched) = (0.0, 0);
     for file in HONEST {
@@ -660,4 +660,122 @@ fn a_held_track_may_jump() {
     let mut track = RotationTrack::from_rotors(even(60), flipped(&rotors(60), &[(20, 30)], Axis::Y));
     track.paths = Paths::Every(PathKind::Hold);
     assert_eq!(all(&clip_of(vec![track])).snags, []);
+}
+
+/// Three joints that are led by the same two slow waves, each in its own way, with a little of a capture's noise.
+fn led_together(rate: f64, secs: f64) -> Vec<Vec<Rotor>> {
+    let count = (secs * rate) as usize;
+    let noise = |key: usize, joint: usize| {
+        // A fixed scatter of about a hundredth of a degree.
+        let scatter = ((key * 7919 + joint * 104_729) as f64 * 0.618_034).fract() - 0.5;
+        4e-4 * scatter
+    };
+    let pose = |key: usize, joint: usize| {
+        let t = key as f64 / rate;
+        let (a, b) = ((5.1 * t).sin() + 0.4 * (11.3 * t).cos(), (7.7 * t + 0.5).cos());
+        let n = noise(key, joint);
+        match joint {
+            0 => Axis::Z.rotor(0.5 * a + 0.2 * b + n) * Axis::X.rotor(0.3 * b - 0.2 * a),
+            1 => Axis::X.rotor(0.4 * a + n) * Axis::Y.rotor(0.1 * b),
+            _ => Axis::Y.rotor(0.35 * b + n) * Axis::Z.rotor(0.1 * a),
+        }
+    };
+    (0..3).map(|joint| (0..count).map(|key| pose(key, joint)).collect()).collect()
+}
+
+fn clip_at(rate: f64, joints: &[Vec<Rotor>]) -> Clip {
+    let times = |count: usize| Times::Even { step_secs: 1.0 / rate, count };
+    let tracks =
+        joints.iter().map(|keys| RotationTrack::from_rotors(times(keys.len()), keys.clone())).collect();
+    let mut clip = clip_of(tracks);
+    clip.grid.rate = rate;
+    clip
+}
+
+#[test]
+fn a_joint_that_is_stuck_is_drawn_from_what_the_others_do() {
+    for rate in [24.0, 60.0, 120.0, 240.0] {
+        let truth = led_together(rate, 8.0);
+        let (first, last) = ((3.0 * rate) as usize, (3.4 * rate) as usize);
+        let mut joints = truth.clone();
+        let held = joints[0][first - 1];
+        joints[0][first..=last].fill(held);
+        let broken = clip_at(rate, &joints);
+        let survey = all(&broken);
+        let snag = only(&survey, SnagKind::Stuck, (first, last));
+        assert!(snag.safe && snag.remedy == Remedy::FromOthers, "{}", snag.text);
+        let mended = survey.mended.rotation(0).unwrap();
+        assert!(
+            mended.changed_keys(broken.rotation(0).unwrap()).iter().all(|key| (first..=last).contains(key))
+        );
+        let error = worst_error_deg(&survey.mended, &truth[0], 0);
+        let across = |key: usize| {
+            let share = (key + 1 - first) as f64 / (last + 2 - first) as f64;
+            slerp(truth[0][first - 1], truth[0][last + 1], share).turn_to(truth[0][key])
+        };
+        let straight = (first..=last).map(across).fold(0.0, f64::max).to_degrees();
+        assert!(error < 0.2 * straight, "{rate} a second: {error}°, straight across {straight}°");
+        // No corner at the borders: from step to step the rate changes no more there than the truth's does near by.
+        let bend = |keys: &[Rotor], key: usize| {
+            let step = |key: usize| (keys[key - 1].reverse() * keys[key]).plane_angles();
+            (step(key + 1) - step(key)).length()
+        };
+        let usual = (first - 8..=last + 8).map(|key| bend(&truth[0], key)).fold(0.0, f64::max);
+        for key in [first - 1, first, last, last + 1] {
+            let own = bend(&mended.keys, key);
+            assert!(own < 1.5 * usual + 1e-3, "{rate} a second, key {key}: {own}, usual {usual}");
+        }
+    }
+}
+
+#[test]
+fn rests_that_are_meant_are_not_stuck() {
+    let rate = 60.0;
+    let sound = led_together(rate, 8.0);
+    let none = |what: &str, joints: &[Vec<Rotor>]| {
+        let told = all(&clip_at(rate, joints)).snags;
+        assert!(told.is_empty(), "{what}: {}", told[0].text);
+    };
+    // The whole clip is held.
+    let mut joints = sound.clone();
+    for keys in &mut joints {
+        let held = keys[199];
+        keys[200..230].fill(held);
+    }
+    none("repeated frames", &joints);
+    // A joint that never moves, and one that hardly ever does.
+    let mut joints = sound.clone();
+    joints[1].fill(Axis::X.rotor(0.2));
+    let held = joints[2][0];
+    joints[2][..400].fill(held);
+    none("a joint at rest", &joints);
+    // A pose that is eased into, held, and eased out of.
+    let eased = |key: usize| {
+        let along = |t: f64| t * t * (3.0 - 2.0 * t);
+        let t = key as f64 / rate;
+        match t {
+            t if t < 2.0 => 0.4 * along(t / 2.0),
+            t if t < 3.0 => 0.4,
+            t if t < 6.0 => 0.4 + 0.6 * along((t - 3.0) / 3.0),
+            t => 1.0 + 0.3 * (1.0 - (t - 6.0).cos()),
+        }
+    };
+    let mut joints = sound.clone();
+    joints[0] = (0..480).map(|key| Axis::Y.rotor(eased(key))).collect();
+    none("an eased pose", &joints);
+    // Straight ways between far keys, as a machine moves.
+    let straight = |key: usize| match key {
+        0..100 => 0.01 * key as f64,
+        100..160 => 1.0,
+        160..300 => 1.0 + 0.008 * (key - 160) as f64,
+        _ => 2.12 - 0.006 * (key - 300) as f64,
+    };
+    let mut joints = sound.clone();
+    joints[0] = (0..480).map(|key| Axis::Y.rotor(straight(key))).collect();
+    none("a machine", &joints);
+    // A knee that a solver holds at the end of its range, time and again.
+    let mut joints = sound;
+    let bend = |key: usize| (0.8 + 1.1 * (0.11 * key as f64).sin()).max(0.0);
+    joints[0] = (0..480).map(|key| Axis::X.rotor(bend(key))).collect();
+    none("a straight knee", &joints);
 }

@@ -55,6 +55,7 @@ fn mend_name(snag: &Snag) -> &'static str {
         Remedy::Unwrap(_) => "unwrap",
         Remedy::NearestAngles => "nearest-angles",
         Remedy::Redraw => "redraw",
+        Remedy::FromOthers => "redraw-from-others",
         Remedy::ShortWay => "short-way",
         Remedy::TakeOut(_) => "take-out",
         Remedy::TakeOutAbove(_) => "take-out-above",

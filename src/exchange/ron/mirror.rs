@@ -145,6 +145,7 @@ pub(super) enum Remedy {
     Unwrap(i32, i32, i32),
     NearestAngles,
     Redraw,
+    FromOthers,
     ShortWay,
     /// Scalar, yz, zx, xy.
     TakeOut(f64, f64, f64, f64),

@@ -93,7 +93,7 @@ impl PassKind for MendPass {
 }
 
 fn moves_poses(kind: SnagKind) -> bool {
-    matches!(kind, SnagKind::HalfTurn | SnagKind::Spike)
+    matches!(kind, SnagKind::HalfTurn | SnagKind::Spike | SnagKind::Stuck)
 }
 
 /// `before` moved by `amount` of its way to `after`, key by key.
