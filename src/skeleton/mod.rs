@@ -1,9 +1,10 @@
-//! Skeletons: joints, rest pose, forward kinematics, and limbs bent to a point.
+//! Skeletons: joints, rest pose, roles, forward kinematics, and limbs bent to a point.
 //!
 //! Knows nothing of time, files or screens.
 
 mod joints;
 mod pose;
+pub mod roles;
 mod transform;
 mod two_joint_limb;
 

@@ -26,6 +26,7 @@
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
 //! | `gui_window` | the whole window, driven by accessible labels; what is asserted is the document |
 //! | `raster` | small pictures of one subject each |
+//! | `roles` | which joint plays which part: families of names, hard cases, the outside files |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
 //! | `rotor_practice` | facts of the trade about reflections, planes, signs and order |
@@ -63,6 +64,7 @@ mod paths;
 mod planter;
 mod proof;
 mod raster;
+mod roles;
 mod rotor_checks;
 mod rotor_methods;
 mod rotor_practice;
