@@ -252,6 +252,22 @@ impl Bench {
         self.project.as_ref()?.result_clip(self.session.work)
     }
 
+    /// The clip that the result is compared with: the source, unless a pass has carried it to another skeleton. Joint numbers
+    /// of the two mean the same joints.
+    pub fn before(&self) -> Option<&Arc<Clip>> {
+        let (source, result) = (self.source()?, self.result()?);
+        Some(if source.has_skeleton_of(result) { source } else { result })
+    }
+
+    /// The result's joint for one of the source: that of the same label, where the result has another skeleton.
+    pub fn shown_joint(&self, joint: usize) -> Option<usize> {
+        let (source, result) = (self.source()?, self.result()?);
+        if source.has_skeleton_of(result) {
+            return Some(joint);
+        }
+        (joint < source.skeleton.len()).then(|| result.skeleton.find(source.skeleton.label(joint)))?
+    }
+
     /// What has been worked out about it.
     pub fn findings(&self) -> Option<&Findings> {
         self.project.as_ref()?.findings.get(self.session.work)

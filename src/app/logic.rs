@@ -230,7 +230,7 @@ impl Window {
 
     /// Goes up or down in the list of joints.
     fn step_joint(&mut self, down: bool) {
-        let Some(clip) = self.bench.source() else { return };
+        let Some(clip) = self.bench.result() else { return };
         let listed: Vec<usize> = clip.skeleton.listed().collect();
         let place = self.bench.session.joint.and_then(|joint| listed.iter().position(|&own| own == joint));
         let next = match place {

@@ -154,6 +154,9 @@ pub(super) struct ConvertArgs {
     /// Second at which the part ends
     #[arg(long, value_name = "S")]
     pub(super) to: Option<f64>,
+    /// Keep as few keys as leave every joint within so many degrees, at all times; into glTF and CSV
+    #[arg(long, value_name = "DEG")]
+    pub(super) reduce: Option<f64>,
     /// Allow the input to be replaced
     #[arg(long)]
     pub(super) force: bool,

@@ -6,11 +6,16 @@
 mod bulk;
 mod contact;
 mod continuity;
+mod copied_keys;
+mod displace;
 mod feet;
+mod key_edit;
 mod keys;
 mod path;
+mod reduce;
 mod resample;
 mod rotation_track;
+mod smooth;
 mod take;
 mod times;
 mod vector_track;
@@ -22,11 +27,16 @@ pub use contact::{
     median_place, slide_of, slides,
 };
 pub use continuity::continuous_angles;
+pub use copied_keys::CopiedKeys;
+pub use displace::{Push, PushFrame, pushed};
 pub use feet::standing_feet;
+pub use key_edit::{KeyChange, KeyEdit, NewKey, with_key_edits};
 pub use keys::Keys;
 pub use path::{MeantTurn, Pace, PathError, PathKind, Paths, Peak, Segment, Segments, Spacing, SpacingError};
+pub use reduce::{KeyCount, ReduceOptions, reduced, reduced_together};
 pub use resample::{cut, resampled};
 pub use rotation_track::{FileAngles, RotationTrack, Stored};
+pub use smooth::{Kernel, Smoothing, partly};
 pub use take::{Clip, FrameGrid, JointTracks};
 pub use times::{Place, Times};
 pub use vector_track::{VectorPath, VectorTrack};

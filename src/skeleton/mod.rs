@@ -3,12 +3,14 @@
 //! Knows nothing of time, files or screens.
 
 mod joints;
+mod mirror;
 mod pose;
 pub mod roles;
 mod transform;
 mod two_joint_limb;
 
 pub use joints::{Joint, JointKind, Skeleton, SkeletonError};
+pub use mirror::Mirror;
 pub use pose::{LocalPose, WorldJoint};
 pub use transform::Transform;
 pub use two_joint_limb::{EASE_FROM, EndTurn, LimbBend, Reach, TwoJointLimb};

@@ -525,6 +525,24 @@ fn a_scene_is_opened_with_its_passes() {
     assert!(gone.stderr.contains("deckhand.bvh"), "{}", gone.stderr);
 }
 
+#[test]
+fn keys_are_reduced_into_formats_that_can_hold_them() {
+    let Some(fox) = shared("data/gltf/Fox.glb") else { return };
+    let bench = Bench::new();
+    bench.copy(&fox, "fox.glb");
+    let told = bench.run("convert fox.glb -o few.glb --reduce 0.5").expect(0).stderr;
+    assert_eq!(told.matches(" keys left").count(), 3, "every clip of a glTF file: {told}");
+    bench.run("convert fox.glb#Run -o few.csv --reduce 2").expect(0);
+    bench.run("proof fox.glb few.glb -o few.json").expect(0);
+    let sheet: Value = serde_json::from_slice(&bench.read("few.json")).unwrap();
+    let change = sheet["clips"][0]["max_change_deg"].as_f64().unwrap();
+    assert!(change > 0.05 && change <= 0.5, "{change}");
+    let refused = bench.run("convert fox.glb -o few.bvh --reduce 0.5").expect(2).stderr;
+    assert!(refused.contains("--reduce: expected a format whose keys may be apart"), "{refused}");
+    let refused = bench.run("convert fox.glb -o few.glb --reduce 90").expect(2).stderr;
+    assert!(refused.contains("degrees above 0 and up to 45"), "{refused}");
+}
+
 /// Each slip gives one line that says where, what was expected and found; nothing on stdout, nothing written.
 #[test]
 fn slips_are_told_in_one_line() {

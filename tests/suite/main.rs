@@ -27,6 +27,7 @@
 //! | `gui_window` | the whole window, driven by accessible labels; what is asserted is the document |
 //! | `raster` | small pictures of one subject each |
 //! | `roles` | which joint plays which part: families of names, hard cases, the outside files |
+//! | `reduce` | key reduction on real clips: the bound checked by other means, the count against the fewest there could be |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
 //! | `rotor_practice` | facts of the trade about reflections, planes, signs and order |
@@ -64,6 +65,7 @@ mod paths;
 mod planter;
 mod proof;
 mod raster;
+mod reduce;
 mod roles;
 mod rotor_checks;
 mod rotor_methods;

@@ -11,6 +11,7 @@ use super::super::panels::{Dialog, Form, Level, Message};
 use super::super::view_models::{CurveSet, CurveView, HeatKind, HeatMap};
 use super::super::window::Window;
 use super::files::{Exported, OpenedScene};
+use crate::clip::Clip;
 use crate::exchange::Source;
 use crate::scene::{Edit, Revision, SourceRef};
 use crate::snag::Snag;
@@ -121,11 +122,13 @@ impl Window {
                 }
             }
             Answer::Evaluated { serial, work, evaluated } => {
+                let chosen = self.chosen_label();
                 if let Some(findings) =
                     self.project_mut(serial).and_then(|project| project.findings.get_mut(work))
                 {
                     findings.evaluated = Some(*evaluated);
                 }
+                self.follow_joint(chosen);
             }
             Answer::Heat(heat) => self.bench.heat = Some(heat),
             Answer::Curves(curves) => self.bench.curves = Some(curves),
@@ -135,6 +138,21 @@ impl Window {
             }
             Answer::Exported(result) => self.take_exported(result),
             Answer::Relocated { serial, index, result } => self.take_relocated(serial, index, result),
+        }
+    }
+
+    /// The label of the chosen joint, and the clip it belongs to.
+    fn chosen_label(&self) -> Option<(Arc<Clip>, String)> {
+        let (joint, clip) = (self.bench.session.joint?, self.bench.result()?);
+        (joint < clip.skeleton.len()).then(|| (Arc::clone(clip), clip.skeleton.label(joint).to_owned()))
+    }
+
+    /// Keeps the joint of that label chosen when the result has come to another skeleton.
+    fn follow_joint(&mut self, chosen: Option<(Arc<Clip>, String)>) {
+        let Some((clip, label)) = chosen else { return };
+        let Some(result) = self.bench.result() else { return };
+        if !clip.has_skeleton_of(result) {
+            self.bench.session.joint = result.skeleton.find(&label);
         }
     }
 

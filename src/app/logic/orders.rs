@@ -35,10 +35,13 @@ impl Window {
         let Some(source) = self.bench.source().cloned() else { return };
         self.order_survey(&source);
         self.order_evaluation(&source);
-        let Some(result) = self.bench.result().cloned() else { return };
-        self.order_heat(&source, &result);
-        self.order_curves(&source, &result);
-        self.order_tip_path(&source, &result);
+        let (Some(before), Some(result)) = (self.bench.before().cloned(), self.bench.result().cloned())
+        else {
+            return;
+        };
+        self.order_heat(&before, &result);
+        self.order_curves(&before, &result);
+        self.order_tip_path(&before, &result);
     }
 
     fn serial(&self) -> u64 {

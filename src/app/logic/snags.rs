@@ -13,12 +13,13 @@ impl Window {
         let Some(snag) = self.bench.snags().get(index).cloned() else { return };
         let Some(clip) = self.bench.source() else { return };
         let window = TimeWindow::around(snag.first_secs, snag.last_secs, clip.duration_secs, clip.grid.rate);
+        let joint = self.bench.shown_joint(snag.joint);
         let session = &mut self.bench.session;
         session.snag = Some(SnagMark::of(&snag));
-        session.joint = Some(snag.joint);
+        session.joint = joint;
         session.window = window;
         session.playback.is_playing = false;
-        self.pictures.scroll_to_joint = Some(snag.joint);
+        self.pictures.scroll_to_joint = joint;
         self.pictures.scroll_to_snag = true;
         self.scrub(snag.first_secs);
     }

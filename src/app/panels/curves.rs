@@ -273,7 +273,7 @@ fn snag_spans_ui(painter: &Painter, axis: &TimeAxis, plot: Rect, joint: usize, s
     let chosen = scope.bench.session.snag;
     let mut last_x = f32::NEG_INFINITY;
     for (snag, &state) in scope.bench.snags().iter().zip(scope.states.iter()) {
-        if snag.joint != joint {
+        if scope.bench.shown_joint(snag.joint) != Some(joint) {
             continue;
         }
         let (left, right) = (axis.x(snag.first_secs), axis.x(snag.last_secs));

@@ -14,7 +14,7 @@ const TREE_ROW: f32 = 20.0;
 
 /// The panel.
 pub(crate) fn joint_sheet_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
-    let (Some(source), Some(result)) = (scope.bench.source().cloned(), scope.bench.result().cloned()) else {
+    let (Some(source), Some(result)) = (scope.bench.before().cloned(), scope.bench.result().cloned()) else {
         strip(ui, "Joints", |_| {});
         hint(ui, "No joints");
         return;

@@ -27,7 +27,7 @@ pub(crate) fn skeleton_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         segment(ui, "Alone", Action::SourceAlone, scope.now, scope.out);
         segment(ui, "Source", Action::ShowBefore, scope.now, scope.out);
     });
-    let (Some(source), Some(result)) = (scope.bench.source().cloned(), scope.bench.result().cloned()) else {
+    let (Some(source), Some(result)) = (scope.bench.before().cloned(), scope.bench.result().cloned()) else {
         hint(ui, "No figure: the source file is not there");
         return;
     };
@@ -150,7 +150,7 @@ fn choose(ui: &Ui, response: &egui::Response, bounds: Rect, scope: &mut Scope<'_
     if let Some(joint) = found {
         scope.out.push(Command::HoverJoint(joint));
         ui.ctx().set_cursor_icon(CursorIcon::PointingHand);
-        if let Some(clip) = scope.bench.source() {
+        if let Some(clip) = scope.bench.result().filter(|clip| joint < clip.skeleton.len()) {
             let name = clip.skeleton.label(joint).to_owned();
             super::super::widgets::read_out(
                 ui.painter(),

@@ -321,7 +321,7 @@ struct Mark {
 }
 
 fn marks(axis: &TimeAxis, rows: &Rows<'_>, scope: &Scope<'_>) -> Vec<Mark> {
-    let mut place_of = vec![None; scope.bench.source().map_or(0, |clip| clip.skeleton.len())];
+    let mut place_of = vec![None; rows.heat.joints.iter().max().map_or(0, |last| last + 1)];
     for (place, &row) in rows.visible.iter().enumerate() {
         place_of[rows.heat.joints[row]] = Some(place);
     }
@@ -329,7 +329,8 @@ fn marks(axis: &TimeAxis, rows: &Rows<'_>, scope: &Scope<'_>) -> Vec<Mark> {
     let mut last: Vec<Option<usize>> = vec![None; rows.visible.len()];
     let mut found: Vec<Mark> = Vec::new();
     for (index, (snag, &state)) in scope.bench.snags().iter().zip(scope.states.iter()).enumerate() {
-        let Some(place) = place_of.get(snag.joint).copied().flatten() else { continue };
+        let shown = scope.bench.shown_joint(snag.joint);
+        let Some(place) = shown.and_then(|joint| place_of.get(joint).copied().flatten()) else { continue };
         let span = Rangef::new(axis.x(snag.first_secs), axis.x(snag.last_secs));
         if span.max < axis.span.min - MARK || span.min > axis.span.max + MARK {
             continue;
@@ -406,7 +407,7 @@ fn hover_read_out(
             format!("{:.0} °/s", if secs > 0.0 { turn / secs } else { 0.0 })
         }
         HeatKind::Change => {
-            let change = scope.bench.source().map_or(0.0, |source| {
+            let change = scope.bench.before().map_or(0.0, |source| {
                 rotation_at(source, joint, at).turn_to(rotation_at(clip, joint, at)).to_degrees()
             });
             format!("{} from the source", degrees(change))

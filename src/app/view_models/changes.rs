@@ -12,6 +12,8 @@ use super::words::{counted, degrees};
 pub struct Changes {
     /// Joints with other numbers than before.
     pub joints: usize,
+    /// The result has another skeleton: all its joints and frames are new.
+    pub other_skeleton: bool,
     /// Frames at which some joint has other numbers.
     pub frames: usize,
     /// The largest turn between before and after at a changed key, in degrees, and the joint's label.
@@ -33,6 +35,7 @@ impl Changes {
         let larger = if other.largest_deg > self.largest_deg { other } else { self };
         Self {
             joints: self.joints + other.joints,
+            other_skeleton: self.other_skeleton || other.other_skeleton,
             frames: self.frames + other.frames,
             largest_deg: larger.largest_deg,
             largest_joint: larger.largest_joint.clone(),
@@ -46,6 +49,9 @@ impl Changes {
             return "Nothing is changed".to_owned();
         }
         let place = format!("{} of {}", counted(self.frames, "frame"), counted(self.joints, "joint"));
+        if self.other_skeleton {
+            return format!("{place} carried to another skeleton");
+        }
         match &self.largest_joint {
             Some(joint) if self.largest_deg >= 5e-3 => {
                 format!("{place} changed, at most by {} ({joint})", degrees(self.largest_deg))
@@ -57,6 +63,11 @@ impl Changes {
 
 /// Compares a source clip with its result.
 pub fn changes(source: &Clip, result: &Clip) -> Changes {
+    if !source.has_skeleton_of(result) {
+        // Nothing of the two can be compared joint by joint.
+        let (joints, frames) = (result.skeleton.listed().count(), result.grid.count());
+        return Changes { joints, frames, other_skeleton: true, ..Changes::default() };
+    }
     let mut found = Changes::default();
     let mut frames = BTreeSet::new();
     let mut stretches = vec![0.0_f64; MOST_POINTS.min(result.grid.count())];

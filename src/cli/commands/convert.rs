@@ -7,7 +7,7 @@ use crate::cli::args::ConvertArgs;
 use crate::cli::error::CliError;
 use crate::cli::input::{self, Input};
 use crate::cli::output::Output;
-use crate::clip::{self, Clip};
+use crate::clip::{self, Clip, ReduceOptions};
 use crate::exchange::{self, Format, Guard};
 
 /// The most frames a clip is resampled to: an hour at 1000 a second.
@@ -19,6 +19,9 @@ pub(crate) fn run(args: &ConvertArgs, output: &mut Output) -> Result<u8, CliErro
         return Err(argument("--rate", "frames per second above 0", rate, "name a rate such as 30"));
     }
     let format = Format::of(&args.output)?;
+    if let Some(degrees) = args.reduce {
+        check_reduce(degrees, format)?;
+    }
     let input = input::open_one(&args.clip, &args.csv.open_options(), output)?;
     let guard = Guard { inputs: input.files(), force: args.force };
     guard.check(&args.output)?;
@@ -27,7 +30,15 @@ pub(crate) fn run(args: &ConvertArgs, output: &mut Output) -> Result<u8, CliErro
     let meant = |index: usize| if all { input.chosen.contains(&index) } else { index == first };
     let mut results: Vec<Arc<Clip>> = Vec::with_capacity(input.results.len());
     for (index, clip) in input.results.iter().enumerate() {
-        results.push(if meant(index) { part_of(clip, args, &input, all)? } else { clip.clone() });
+        results.push(if meant(index) {
+            let part = part_of(clip, args, &input, all)?;
+            match args.reduce {
+                Some(degrees) => reduced(&part, degrees, format, &input, index, output),
+                None => part,
+            }
+        } else {
+            clip.clone()
+        });
     }
     if !all && input.chosen.len() > 1 {
         let label = input.source.clip_label(first);
@@ -81,6 +92,47 @@ fn part_of(
         }
         Some(rate) => clip::resampled(clip, rate, from, to),
     }))
+}
+
+/// Whether keys can be reduced so.
+fn check_reduce(degrees: f64, format: Format) -> Result<(), CliError> {
+    if !(degrees > 0.0 && degrees <= 45.0) {
+        let expected = "degrees above 0 and up to 45";
+        return Err(argument(
+            "--reduce",
+            expected,
+            degrees,
+            "name the largest change that is allowed, such as 0.1",
+        ));
+    }
+    if format == Format::Bvh {
+        return Err(CliError::Argument {
+            place: "--reduce".to_owned(),
+            expected: "a format whose keys may be apart (.gltf, .glb, .csv)".to_owned(),
+            found: ".bvh, which has a row for each frame".to_owned(),
+            advice: "write another format, or leave --reduce out",
+        });
+    }
+    Ok(())
+}
+
+/// With as few keys as the bound allows; a table of rows has the same for all joints.
+fn reduced(
+    clip: &Arc<Clip>,
+    degrees: f64,
+    format: Format,
+    input: &Input,
+    index: usize,
+    output: &mut Output,
+) -> Arc<Clip> {
+    let options = ReduceOptions::within(degrees.to_radians());
+    let is_table = format == Format::Csv;
+    let reduce = if is_table { clip::reduced_together } else { clip::reduced };
+    let (clip, count) = reduce(clip, &options);
+    let what = if is_table { "rows" } else { "keys" };
+    let label = input.source.clip_label(index);
+    output.say(&format!("{label}: {} of {} {what} left", count.after, count.before));
+    Arc::new(clip)
 }
 
 fn argument(place: &str, expected: &str, found: f64, advice: &'static str) -> CliError {

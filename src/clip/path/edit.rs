@@ -343,7 +343,7 @@ impl Stored {
     }
 
     /// Of some keys alone.
-    fn only(&self, keys: &[usize]) -> Self {
+    pub(in super::super) fn only(&self, keys: &[usize]) -> Self {
         let only = |degrees: &Arc<[[f64; 3]]>| keys.iter().map(|&key| degrees[key]).collect();
         match self {
             Self::Rotors => Self::Rotors,

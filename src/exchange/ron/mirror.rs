@@ -54,9 +54,40 @@ pub(super) struct Pass {
 
 #[derive(Serialize, Deserialize)]
 pub(super) enum Step {
-    Mend { kind: String, amount: f64, snags: Vec<Snag> },
-    Resample { rate: f64 },
+    Mend {
+        kind: String,
+        amount: f64,
+        snags: Vec<Snag>,
+    },
+    Resample {
+        rate: f64,
+    },
     Blend(Blend),
+    Smooth {
+        scope: Scope,
+        kernel: String,
+        cutoff_hz: f64,
+        #[serde(default, skip_serializing_if = "Option::is_none")]
+        most_deg: Option<f64>,
+        amount: f64,
+        with_places: bool,
+        #[serde(default, skip_serializing_if = "Vec::is_empty")]
+        masks: Vec<Scope>,
+    },
+    Push {
+        pushes: Vec<Push>,
+    },
+    Keys {
+        edits: Vec<KeyEdit>,
+    },
+    Reduce {
+        scope: Scope,
+        bound_deg: f64,
+        #[serde(default, skip_serializing_if = "Option::is_none")]
+        tip_bound: Option<f64>,
+        #[serde(default, skip_serializing_if = "Vec::is_empty")]
+        keep_seconds: Vec<f64>,
+    },
 }
 
 /// Another clip blended in.
@@ -111,6 +142,68 @@ pub(super) enum Reference {
 pub(super) enum Side {
     Body,
     Parent,
+}
+
+#[derive(Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct Push {
+    pub(super) joint: usize,
+    pub(super) center: f64,
+    pub(super) reach: f64,
+    /// yz, zx, xy in degrees.
+    pub(super) plane_angles: (f64, f64, f64),
+    pub(super) frame: String,
+}
+
+#[derive(Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct KeyEdit {
+    pub(super) joint: usize,
+    pub(super) change: KeyChange,
+}
+
+/// Of a rotor: scalar, yz, zx, xy.
+pub(super) type Parts = (f64, f64, f64, f64);
+
+/// Seconds first, then what they get.
+#[derive(Serialize, Deserialize)]
+pub(super) enum KeyChange {
+    Insert(Vec<(f64, Option<Parts>)>),
+    Set(Vec<(f64, Parts)>),
+    Move(Vec<(f64, f64)>),
+    Delete(Vec<f64>),
+    Path(Vec<f64>, String),
+    Space(Vec<f64>, Spacing),
+    /// Whole turns, and the plane they are in where it is not that of the short way.
+    Turn(Vec<f64>, i32, Option<(f64, f64, f64)>),
+}
+
+#[derive(Serialize, Deserialize)]
+pub(super) enum Spacing {
+    Even,
+    EaseIn,
+    EaseOut,
+    EaseBoth,
+    /// Two handles: share of the time, share of the way.
+    Own((f64, f64), (f64, f64)),
+}
+
+/// Where a pass acts. What is left out means everywhere.
+#[derive(Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct Scope {
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) joints: Option<Vec<usize>>,
+    /// First and last.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) seconds: Option<(f64, f64)>,
+    #[serde(default, skip_serializing_if = "is_zero")]
+    pub(super) fade_seconds: f64,
+}
+
+#[expect(clippy::trivially_copy_pass_by_ref, reason = "serde hands over a reference")]
+fn is_zero(number: &f64) -> bool {
+    *number == 0.0
 }
 
 impl Step {

@@ -1,6 +1,7 @@
 //! Our own scenes: versioned RON text that refers to its sources by relative path and content hash.
 
 mod error;
+mod key_edits;
 mod mirror;
 mod scene_file;
 mod steps;

@@ -259,8 +259,14 @@ fn tidy(path: &Path) -> PathBuf {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::clip::{
+        Kernel, KeyChange, KeyEdit, MeantTurn, NewKey, PathKind, Push, PushFrame, Smoothing, Spacing,
+    };
+    use crate::rotor::Bivector;
     use crate::rotor::Rotor;
-    use crate::scene::{MendPass, NoOthers, ResamplePass};
+    use crate::scene::{
+        KeysPass, MendPass, NoOthers, PassStep, PushPass, ReducePass, ResamplePass, Scope, SmoothPass,
+    };
     use crate::snag::{Remedy, Snag, SnagKind};
 
     fn snag(kind: SnagKind, joint: usize, remedy: Remedy) -> Snag {
@@ -333,11 +339,49 @@ mod tests {
             (text.lines().find(|line| line.contains("turnwright_scene")).unwrap().trim().to_owned(), back)
         };
         assert_eq!(version(&document).0, "turnwright_scene: 1,");
-        let step = ResamplePass { rate: 30.0 }.into();
-        document.works[0].passes.push(Pass { id: PassId(5), on: true, step });
+        let scope = Scope { joints: Some(vec![0, 2]), span_secs: Some([0.5, 1.5]), fade_secs: 0.25 };
+        let smoothing = Smoothing { kernel: Kernel::Binomial, cutoff_hz: 6.0, most_rad: None };
+        let turn = Bivector::new(0.0, 0.5, 0.0);
+        let push = Push { joint: 1, center_secs: 0.5, reach_secs: 0.25, turn, frame: PushFrame::World };
+        let reduce = ReducePass {
+            scope: scope.clone(),
+            tip_bound: Some(0.5),
+            keep_secs: vec![1.0],
+            ..ReducePass::within(0.0)
+        };
+        let masks = vec![scope.clone()];
+        let rotor = Rotor::from_xyzw([0.6, 0.0, 0.8, 0.0]);
+        let spacing = Spacing::handles([[0.2, 0.0], [0.7, 1.0]]).unwrap();
+        let changes = [
+            KeyChange::Insert(vec![
+                NewKey { secs: 0.5, rotor: None },
+                NewKey { secs: 0.7, rotor: Some(rotor) },
+            ]),
+            KeyChange::Set(vec![(1.0, rotor)]),
+            KeyChange::Move(vec![[1.0, 1.25]]),
+            KeyChange::Delete(vec![2.0]),
+            KeyChange::Path(vec![0.0], PathKind::Squad),
+            KeyChange::Space(vec![0.0, 1.0], spacing),
+            KeyChange::Space(vec![2.0], Spacing::EaseBoth),
+            KeyChange::Turn(vec![0.0], MeantTurn::OTHER_WAY),
+            KeyChange::Turn(vec![0.0], MeantTurn::in_plane(2, Bivector::new(0.0, 1.0, 0.0)).unwrap()),
+        ];
+        let edits = changes.into_iter().map(|change| KeyEdit { joint: 1, change }).collect();
+        let steps: [PassStep; 5] = [
+            ResamplePass { rate: 30.0 }.into(),
+            SmoothPass { scope, masks, with_places: true, ..SmoothPass::new(smoothing) }.into(),
+            PushPass { pushes: vec![push] }.into(),
+            reduce.into(),
+            KeysPass { edits }.into(),
+        ];
+        let passes = steps.into_iter().zip(5..).map(|(step, id)| Pass { id: PassId(id), on: true, step });
+        document.works[0].passes.extend(passes);
         let (line, back) = version(&document);
         assert_eq!(line, "turnwright_scene: 2,");
-        assert_eq!(back.passes[1], document.works[0].passes[1]);
+        assert_eq!(back.passes[1..3], document.works[0].passes[1..3]);
+        assert_eq!(back.passes[4..], document.works[0].passes[4..]);
+        let PassStep::Push(own) = &back.passes[3].step else { panic!("{:?}", back.passes[3]) };
+        assert!((own.pushes[0].turn - turn).length() < 1e-15 && own.pushes[0].frame == PushFrame::World);
     }
 
     #[test]

@@ -1,10 +1,15 @@
 //! Passes between the document and the file: one pair of arms for each kind.
 
 use crate::blend::{JoinPlace, MixAlong, Reference, RootFrom, Side};
-use crate::rotor::Rotor;
-use crate::scene::{BlendForm, BlendPass, ClipRef, MendPass, PassStep, ResamplePass};
+use crate::clip::{Kernel, KeyEdit, Push, PushFrame, Smoothing};
+use crate::rotor::{Bivector, Rotor};
+use crate::scene::{
+    BlendForm, BlendPass, ClipRef, KeysPass, MendPass, PassStep, PushPass, ReducePass, ResamplePass, Scope,
+    SmoothPass,
+};
 use crate::snag::{Remedy, Snag, SnagKind};
 
+use super::key_edits::{key_edit_from, key_edit_to};
 use super::mirror;
 
 /// A step as the document holds it.
@@ -18,6 +23,34 @@ pub(super) fn step_from(step: mirror::Step) -> Result<PassStep, String> {
         }
         mirror::Step::Resample { rate } => ResamplePass { rate }.into(),
         mirror::Step::Blend(blend) => blend_from(blend).into(),
+        mirror::Step::Smooth { scope, kernel, cutoff_hz, most_deg, amount, with_places, masks } => {
+            amount_in_range(amount)?;
+            let kernel = Kernel::named(&kernel)
+                .ok_or_else(|| format!("expected the kernel gaussian, binomial or box, found `{kernel}`"))?;
+            SmoothPass {
+                scope: scope_from(scope),
+                smoothing: Smoothing { kernel, cutoff_hz, most_rad: most_deg.map(f64::to_radians) },
+                amount,
+                with_places,
+                masks: masks.into_iter().map(scope_from).collect(),
+            }
+            .into()
+        }
+        mirror::Step::Push { pushes } => {
+            let pushes: Result<Vec<Push>, String> = pushes.iter().map(push_from).collect();
+            PushPass { pushes: pushes? }.into()
+        }
+        mirror::Step::Keys { edits } => {
+            let edits: Result<Vec<KeyEdit>, String> = edits.into_iter().map(key_edit_from).collect();
+            KeysPass { edits: edits? }.into()
+        }
+        mirror::Step::Reduce { scope, bound_deg, tip_bound, keep_seconds } => ReducePass {
+            scope: scope_from(scope),
+            bound_rad: bound_deg.to_radians(),
+            tip_bound,
+            keep_secs: keep_seconds,
+        }
+        .into(),
     })
 }
 
@@ -31,6 +64,23 @@ pub(super) fn step_to(step: &PassStep, label: &dyn Fn(usize) -> String) -> mirro
         },
         PassStep::Resample(pass) => mirror::Step::Resample { rate: pass.rate },
         PassStep::Blend(pass) => mirror::Step::Blend(blend_to(pass)),
+        PassStep::Smooth(pass) => mirror::Step::Smooth {
+            scope: scope_to(&pass.scope),
+            kernel: pass.smoothing.kernel.name().to_owned(),
+            cutoff_hz: pass.smoothing.cutoff_hz,
+            most_deg: pass.smoothing.most_rad.map(f64::to_degrees),
+            amount: pass.amount,
+            with_places: pass.with_places,
+            masks: pass.masks.iter().map(scope_to).collect(),
+        },
+        PassStep::Push(pass) => mirror::Step::Push { pushes: pass.pushes.iter().map(push_to).collect() },
+        PassStep::Keys(pass) => mirror::Step::Keys { edits: pass.edits.iter().map(key_edit_to).collect() },
+        PassStep::Reduce(pass) => mirror::Step::Reduce {
+            scope: scope_to(&pass.scope),
+            bound_deg: pass.bound_rad.to_degrees(),
+            tip_bound: pass.tip_bound,
+            keep_seconds: pass.keep_secs.clone(),
+        },
     }
 }
 
@@ -96,6 +146,39 @@ fn blend_to(pass: &BlendPass) -> mirror::Blend {
     };
     let other = (pass.other.source, pass.other.clip);
     mirror::Blend { other, form, joints: pass.joints.clone(), holds_feet: pass.holds_feet }
+}
+
+fn push_from(push: &mirror::Push) -> Result<Push, String> {
+    let frame = PushFrame::named(&push.frame)
+        .ok_or_else(|| format!("expected the frame own, rest, parent or world, found `{}`", push.frame))?;
+    let (yz, zx, xy) = push.plane_angles;
+    Ok(Push {
+        joint: push.joint,
+        center_secs: push.center,
+        reach_secs: push.reach,
+        turn: Bivector::from_degrees([yz, zx, xy]),
+        frame,
+    })
+}
+
+fn push_to(push: &Push) -> mirror::Push {
+    mirror::Push {
+        joint: push.joint,
+        center: push.center_secs,
+        reach: push.reach_secs,
+        plane_angles: push.turn.to_degrees().into(),
+        frame: push.frame.name().to_owned(),
+    }
+}
+
+fn scope_from(scope: mirror::Scope) -> Scope {
+    let span_secs = scope.seconds.map(|(first, last)| [first, last]);
+    Scope { joints: scope.joints, span_secs, fade_secs: scope.fade_seconds }
+}
+
+fn scope_to(scope: &Scope) -> mirror::Scope {
+    let seconds = scope.span_secs.map(|[first, last]| (first, last));
+    mirror::Scope { joints: scope.joints.clone(), seconds, fade_seconds: scope.fade_secs }
 }
 
 fn amount_in_range(amount: f64) -> Result<(), String> {

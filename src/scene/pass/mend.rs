@@ -2,9 +2,8 @@
 
 use std::sync::Arc;
 
-use crate::clip::{Clip, RotationTrack};
+use crate::clip::{Clip, partly};
 use crate::mend;
-use crate::rotor::slerp;
 use crate::snag::{Snag, SnagKind};
 
 use super::error::PassError;
@@ -66,7 +65,7 @@ impl PassKind for MendPass {
                 if let (Some(before), Some(after)) = (clip.rotation(joint), mended.rotation(joint))
                     && !clip.same_joint(&mended, joint)
                 {
-                    let part = partly(before, after, self.amount);
+                    let part = partly(before, after, &|_| self.amount);
                     mended = mended.with_rotation(joint, part);
                 }
             }
@@ -94,14 +93,4 @@ impl PassKind for MendPass {
 
 fn moves_poses(kind: SnagKind) -> bool {
     matches!(kind, SnagKind::HalfTurn | SnagKind::Spike | SnagKind::Stuck)
-}
-
-/// `before` moved by `amount` of its way to `after`, key by key.
-fn partly(before: &RotationTrack, after: &RotationTrack, amount: f64) -> RotationTrack {
-    let changes: Vec<_> = after
-        .changed_keys(before)
-        .into_iter()
-        .map(|key| (key, slerp(before.sound_key(key), after.sound_key(key), amount)))
-        .collect();
-    before.with_keys(&changes)
 }

@@ -2,19 +2,27 @@
 
 mod blend;
 mod error;
+mod keys;
 mod kind;
 mod mend;
 mod others;
+mod push;
+mod reduce;
 mod resample;
 mod scope;
+mod smooth;
 
 pub use blend::{BlendForm, BlendPass};
 pub use error::PassError;
+pub use keys::KeysPass;
 pub use kind::{Outcome, PassKind};
 pub use mend::{MendPass, SnagMark};
 pub use others::{ClipRef, Need, NoOthers, Others};
+pub use push::PushPass;
+pub use reduce::ReducePass;
 pub use resample::ResamplePass;
 pub use scope::Scope;
+pub use smooth::SmoothPass;
 
 /// Names a pass for as long as the document lives; never used twice in one clip's list.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -71,6 +79,14 @@ steps! {
     Resample(ResamplePass),
     /// Another clip blended in.
     Blend(BlendPass),
+    /// Fewer keys.
+    Reduce(ReducePass),
+    /// Smoothing.
+    Smooth(SmoothPass),
+    /// Soft pushes by hand.
+    Push(PushPass),
+    /// Keys edited by hand.
+    Keys(KeysPass),
 }
 
 impl PassStep {

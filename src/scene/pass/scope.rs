@@ -37,6 +37,12 @@ impl Scope {
         share.powi(3) * (share * (6.0 * share - 15.0) + 10.0)
     }
 
+    /// The same seen as a mask: 1 inside the span, and along fades of `fade_secs` *outside* of it down to 0.
+    pub fn cover(&self, time_secs: f64) -> f64 {
+        let wider = |[first, last]: [f64; 2]| [first - self.fade_secs, last + self.fade_secs];
+        Self { joints: None, span_secs: self.span_secs.map(wider), ..*self }.weight(time_secs)
+    }
+
     /// Gives the joints other numbers; those that have none any more go.
     pub fn renumber(&mut self, now: &dyn Fn(usize) -> Option<usize>) {
         if let Some(joints) = &mut self.joints {
@@ -59,5 +65,6 @@ mod tests {
         let hard = Scope { span_secs: Some([1.0, 3.0]), ..Scope::default() };
         assert_eq!([0.99, 1.0, 3.0, 3.01].map(|secs| hard.weight(secs)), [0.0, 1.0, 1.0, 0.0]);
         assert_eq!(Scope::default().weight(f64::MAX), 1.0);
+        assert_eq!([0.5, 0.75, 1.0, 3.0, 3.5].map(|secs| scope.cover(secs)), [0.0, 0.5, 1.0, 1.0, 0.0]);
     }
 }
