@@ -1,6 +1,6 @@
 //! Turnwright: find, mend, reshape and prove the turns of an animation clip.
 //!
-//! Layers, lowest first; each knows only those before it: [`rotor`], [`skeleton`], [`clip`], [`snag`], [`mend`],
+//! Layers, lowest first; each knows only those before it: [`rotor`], [`skeleton`], [`clip`], [`limit`], [`snag`], [`mend`],
 //! [`scene`], [`exchange`], [`demo`], [`proof`], [`raster`], [`cli`] and `app`.
 //!
 //! Conventions: right-handed, Y up, seconds, lengths as in the file, radians, `f64`. Degrees appear at two borders
@@ -13,6 +13,7 @@ pub mod cli;
 pub mod clip;
 pub mod demo;
 pub mod exchange;
+pub mod limit;
 pub mod mend;
 pub mod proof;
 pub mod raster;

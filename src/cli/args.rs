@@ -9,6 +9,8 @@ use crate::exchange::OpenOptions;
 use crate::exchange::csv::{CsvOptions, NamedColumns, TimeUnit};
 use crate::snag::SnagKind;
 
+use super::limits::LimitsName;
+
 /// Finds, mends and proves rotation faults in animation clips.
 ///
 /// Without a command it opens the window on the files given, or on the demo scene. Clips are .gltf, .glb, .bvh and
@@ -63,6 +65,14 @@ pub(super) struct SnagsArgs {
     /// Look for these kinds only
     #[arg(long, value_name = "K,…", value_delimiter = ',')]
     pub(super) kinds: Option<Vec<SnagKind>>,
+    /// Hold the joints against the limits in a file (.csv with the columns joint, `swing_deg`, `twist_min_deg`,
+    /// `twist_max_deg`; or .ron), or
+    /// against the preset adult, for human figures
+    ///
+    /// The preset adult is made of published ranges, put on the skeleton by the roles of its joints. Population norms for
+    /// plausible animation, not clinical advice and not limits for a person; machines need their own limits.
+    #[arg(long, value_name = "FILE|adult")]
+    pub(super) limits: Option<LimitsName>,
     #[command(flatten)]
     pub(super) csv: CsvArgs,
 }
@@ -85,6 +95,14 @@ pub(super) struct MendArgs {
     /// Leave these kinds alone
     #[arg(long, value_name = "K,…", value_delimiter = ',')]
     pub(super) skip: Vec<SnagKind>,
+    /// Hold the joints against the limits in a file (.csv with the columns joint, `swing_deg`, `twist_min_deg`,
+    /// `twist_max_deg`; or .ron), or
+    /// against the preset adult, for human figures
+    ///
+    /// The preset adult is made of published ranges, put on the skeleton by the roles of its joints. Population norms for
+    /// plausible animation, not clinical advice and not limits for a person; machines need their own limits.
+    #[arg(long, value_name = "FILE|adult")]
+    pub(super) limits: Option<LimitsName>,
     /// Write a proof sheet, .html or .json; for several files one each, named after them
     #[arg(long, value_name = "FILE")]
     pub(super) proof: Option<PathBuf>,

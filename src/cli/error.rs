@@ -31,6 +31,9 @@ pub enum CliError {
         /// The file.
         path: PathBuf,
     },
+    /// Limits that can't be read, or are of another skeleton.
+    #[error("{}", with_advice(&.0.to_string(), "put it right there"))]
+    Limits(#[from] exchange::limits::LimitsError),
     /// A clip that the file does not have.
     #[error("{path}: clip: expected one of {known}, found `{found}`; write {path}#NAME or {path}#INDEX", path = path.display())]
     NoSuchClip {

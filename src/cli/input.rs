@@ -5,6 +5,7 @@ use std::sync::Arc;
 
 use crate::clip::Clip;
 use crate::exchange::{self, ClipAddress, OpenOptions, Source, disk, ron};
+use crate::limit::Limits;
 use crate::scene::{Document, Library, Loaded};
 
 use super::error::CliError;
@@ -19,6 +20,8 @@ pub(super) struct Input {
     pub(super) source: Source,
     /// A result for each clip of the source.
     pub(super) results: Vec<Arc<Clip>>,
+    /// The limits that a scene has for each clip of the source.
+    pub(super) limits: Vec<Option<Arc<Limits>>>,
     /// Indices of the clips that are meant.
     pub(super) chosen: Vec<usize>,
     /// Whether the user named one of several clips.
@@ -104,6 +107,7 @@ fn open_clips(address: &ClipAddress, options: &OpenOptions) -> Result<Input, Cli
     Ok(Input {
         path: address.path.clone(),
         results: source.clips.clone(),
+        limits: vec![None; count],
         source,
         chosen,
         is_named: address.clip.is_some(),
@@ -142,6 +146,7 @@ fn open_scene(
     let mut inputs = Vec::new();
     for (index, source) in sources.into_iter().enumerate() {
         let mut results = source.clips.clone();
+        let mut limits = vec![None; results.len()];
         let mut chosen = Vec::new();
         for (work, own) in scene.document.works.iter().enumerate() {
             if own.source != index {
@@ -150,6 +155,10 @@ fn open_scene(
             let Some(evaluation) = library.evaluate(work) else { continue };
             for problem in evaluation.stages.iter().filter_map(|stage| stage.problem.as_ref()) {
                 output.note(&address.path, &format!("{problem}; the pass is left out"));
+            }
+            // Behind a pass that leads to another skeleton they would fit other joints.
+            if Arc::ptr_eq(&evaluation.result.skeleton, &source.clips[own.clip].skeleton) {
+                limits[own.clip].clone_from(&own.limits);
             }
             results[own.clip] = evaluation.result;
             let is_meant = address.clip.as_ref().is_none_or(|wanted| {
@@ -161,7 +170,7 @@ fn open_scene(
         }
         if !chosen.is_empty() {
             let is_named = address.clip.is_some();
-            inputs.push(Input { path: address.path.clone(), source, results, chosen, is_named });
+            inputs.push(Input { path: address.path.clone(), source, results, limits, chosen, is_named });
         }
     }
     if inputs.is_empty() {

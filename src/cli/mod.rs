@@ -6,6 +6,7 @@ mod args;
 mod commands;
 mod error;
 mod input;
+mod limits;
 mod output;
 mod progress;
 mod targets;

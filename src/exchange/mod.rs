@@ -9,6 +9,7 @@ pub mod decimal;
 pub mod disk;
 mod export;
 pub mod gltf;
+pub mod limits;
 mod losses;
 mod note;
 pub mod ron;

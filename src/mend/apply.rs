@@ -6,7 +6,7 @@ use crate::clip::{Clip, RotationTrack};
 use crate::snag::{Remedy, Snag};
 
 use super::draft::Draft;
-use super::{MendError, numbers, redraw, stuck, take_out};
+use super::{MendError, clamp, numbers, redraw, stuck, take_out};
 
 /// `clip` with one snag mended. The same snag in the same clip always gives the same numbers; joints other than the
 /// snag's stay shared, and so does its own when there is nothing to do ([`Remedy::Ask`]).
@@ -82,6 +82,7 @@ pub(super) fn mend(draft: &mut Draft, clip: &Clip, snag: &Snag) {
         Remedy::ShortWay => numbers::short_way(draft, last),
         Remedy::TakeOut(offset) => take_out::take_out(draft, first, last, |pose| pose * offset),
         Remedy::TakeOutAbove(offset) => take_out::take_out(draft, first, last, |pose| offset * pose),
+        Remedy::Clamp(limit) => clamp::clamp(draft, first, last, &limit),
         Remedy::Ask => {}
     }
 }

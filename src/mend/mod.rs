@@ -1,6 +1,7 @@
 //! Mending rotation faults. One file a kind of remedy; a mend gives a new clip and leaves the old one as it was.
 
 mod apply;
+mod clamp;
 mod draft;
 mod error;
 mod numbers;

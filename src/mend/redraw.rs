@@ -180,7 +180,7 @@ fn fitted_rate(draft: &Draft, key: usize, others: std::ops::Range<usize>) -> Opt
 }
 
 /// The derivative of the four numbers at a redrawn key, per second, by its neighbours.
-fn tangent(draft: &Draft, key: usize) -> Rotor {
+pub(super) fn tangent(draft: &Draft, key: usize) -> Rotor {
     let own = draft.keys[key];
     let (before, after) = (key.saturating_sub(1), (key + 1).min(draft.len() - 1));
     let secs = draft.secs(after) - draft.secs(before);

@@ -1,26 +1,30 @@
 //! Finds all snags of a clip, kind by kind, each on what the mends before it left.
 
 use std::collections::BTreeSet;
+use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
 
 use rayon::prelude::*;
 
 use crate::clip::{Clip, RotationTrack};
-use crate::snag::{Cancelled, Progress, Remedy, Snag, SnagKind, find};
+use crate::limit::Limits;
+use crate::snag::{Cancelled, Progress, Remedy, Snag, SnagKind, find, find_past_limit};
 
 use super::apply::{asks_others, change_of_keys_rad, mend};
 use super::draft::Draft;
 
 /// What to look for.
-#[derive(Clone, Debug, PartialEq, Eq)]
+#[derive(Clone, Debug, PartialEq)]
 pub struct SurveyOptions {
     /// The kinds; their order does not matter.
     pub kinds: Vec<SnagKind>,
+    /// Limits to hold the joints against; without any there is no [`SnagKind::PastLimit`].
+    pub limits: Option<Arc<Limits>>,
 }
 
 impl Default for SurveyOptions {
     fn default() -> Self {
-        Self { kinds: SnagKind::ALL.to_vec() }
+        Self { kinds: SnagKind::ALL.to_vec(), limits: None }
     }
 }
 
@@ -59,7 +63,7 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
                 if stopped.load(Ordering::Relaxed) {
                     return JointOutcome::default();
                 }
-                let outcome = one_joint(&working, joint, kind);
+                let outcome = one_joint(&working, joint, kind, options.limits.as_deref());
                 if !progress.report(done.fetch_add(1, Ordering::Relaxed) + 1, total) {
                     stopped.store(true, Ordering::Relaxed);
                 }
@@ -108,8 +112,11 @@ struct JointOutcome {
     asking: Vec<Snag>,
 }
 
-fn one_joint(clip: &Clip, joint: usize, kind: SnagKind) -> JointOutcome {
-    let snags = find(clip, joint, kind);
+fn one_joint(clip: &Clip, joint: usize, kind: SnagKind, limits: Option<&Limits>) -> JointOutcome {
+    let snags = match (kind, limits) {
+        (SnagKind::PastLimit, Some(limits)) => find_past_limit(clip, joint, limits),
+        _ => find(clip, joint, kind),
+    };
     if snags.iter().any(asks_others) {
         return JointOutcome { asking: snags, ..JointOutcome::default() };
     }

@@ -1,6 +1,9 @@
 //! A clip's part of the sheet, from the two clips alone.
 
+use std::sync::Arc;
+
 use crate::clip::Clip;
+use crate::limit::{Keeping, Limits};
 use crate::mend;
 use crate::mend::SurveyOptions;
 use crate::snag::{Progress, Snag};
@@ -9,7 +12,7 @@ use super::curves::joint_curves;
 use super::error::ProofError;
 use super::measure::measure;
 use super::pictures::pictures;
-use super::sheet::{ClipProof, FoundSnag};
+use super::sheet::{ClipProof, FoundSnag, LimitRow, LimitsProof};
 
 /// Measures `after` against `before`, and looks for snags in both. Without pictures: see [`ClipProof::draw`].
 ///
@@ -24,13 +27,61 @@ pub fn compare(
     index: usize,
     progress: &dyn Progress,
 ) -> Result<ClipProof, ProofError> {
+    compare_with(before, after, label, index, None, progress)
+}
+
+/// As [`compare`], with the limits of the clip before, against which both are held too.
+///
+/// # Errors
+/// As [`compare`].
+pub fn compare_with(
+    before: &Clip,
+    after: &Clip,
+    label: String,
+    index: usize,
+    limits: Option<&Arc<Limits>>,
+    progress: &dyn Progress,
+) -> Result<ClipProof, ProofError> {
     let measurement = measure(before, after, progress)?;
-    let found = |clip: &Clip| -> Result<Vec<FoundSnag>, ProofError> {
-        let survey = mend::survey(clip, &SurveyOptions::default(), progress)?;
+    let limits_after = limits.and_then(|limits| carried_over(limits, before, after)).map(Arc::new);
+    let found = |clip: &Clip, limits: Option<Arc<Limits>>| -> Result<Vec<FoundSnag>, ProofError> {
+        let survey = mend::survey(clip, &SurveyOptions { limits, ..SurveyOptions::default() }, progress)?;
         let label = |snag: &Snag| clip.skeleton.label(snag.joint);
         Ok(survey.snags.iter().map(|snag| FoundSnag::new(snag, label(snag), false)).collect())
     };
-    Ok(ClipProof::new(label, index, measurement, found(before)?, found(after)?))
+    let kept = limits.map(|limits| limits_kept(limits, limits_after.as_deref(), before, after));
+    let (found_before, found_after) = (found(before, limits.cloned())?, found(after, limits_after)?);
+    let mut proof = ClipProof::new(label, index, measurement, found_before, found_after);
+    proof.limits = kept;
+    Ok(proof)
+}
+
+/// The limits for the joints of the clip after, found by their labels; `None` where any of them rests otherwise, so that the
+/// limit's zero would mean another pose.
+fn carried_over(limits: &Limits, before: &Clip, after: &Clip) -> Option<Limits> {
+    /// Rests are told apart from here on, radians: 32 bits in a file round less.
+    const SAME_RAD: f64 = 1e-4;
+    let (own, others) = (&before.skeleton, &after.skeleton);
+    let now = |joint: usize| others.find(own.label(joint));
+    let rests_alike = |joint: usize| {
+        now(joint).is_none_or(|other| {
+            own.joints()[joint].rest.rotation.turn_to(others.joints()[other].rest.rotation) < SAME_RAD
+        })
+    };
+    limits.joints.keys().all(|joint| rests_alike(*joint)).then(|| limits.renumbered(&now))
+}
+
+fn limits_kept(limits: &Limits, limits_after: Option<&Limits>, before: &Clip, after: &Clip) -> LimitsProof {
+    let kept_after: Vec<(String, Keeping)> = limits_after.map_or_else(Vec::new, |limits| {
+        let kept = limits.keeping(after).into_iter();
+        kept.map(|kept| (after.skeleton.label(kept.joint).to_owned(), kept)).collect()
+    });
+    let rows = limits.keeping(before).into_iter().map(|kept| {
+        let joint = before.skeleton.label(kept.joint).to_owned();
+        let after = kept_after.iter().find(|(label, _)| *label == joint).map(|(_, kept)| kept.clone());
+        LimitRow { joint, before: kept, after }
+    });
+    LimitsProof { title: limits.title.clone(), rows: rows.collect() }
 }
 
 impl ClipProof {

@@ -14,11 +14,11 @@ mod sheet_html;
 mod sheet_json;
 mod untouched;
 
-pub use compare::compare;
+pub use compare::{compare, compare_with};
 pub use curves::{JointCurves, joint_curves};
 pub use error::ProofError;
 pub use measure::{JointMeasure, Measurement, TipMeasure, measure};
 pub use rates::{Peak, RateMeasure, rates};
-pub use sheet::{CAUTION, ClipProof, FileFacts, FoundSnag, Sheet, SheetPicture};
+pub use sheet::{CAUTION, ClipProof, FileFacts, FoundSnag, LimitRow, LimitsProof, Sheet, SheetPicture};
 pub use sheet_html::sheet_html;
 pub use sheet_json::sheet_json;

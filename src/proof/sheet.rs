@@ -1,5 +1,6 @@
 //! What a proof sheet tells, before it takes a form.
 
+use crate::limit::Keeping;
 use crate::snag::{Snag, SnagKind};
 
 use super::curves::JointCurves;
@@ -50,6 +51,26 @@ pub struct SheetPicture {
     pub dark_png: Vec<u8>,
 }
 
+/// How one joint kept to its limit before and after.
+#[derive(Clone, Debug, PartialEq)]
+pub struct LimitRow {
+    /// Its label.
+    pub joint: String,
+    /// In the clip before.
+    pub before: Keeping,
+    /// In the clip after; `None` where the joint is gone, or rests otherwise.
+    pub after: Option<Keeping>,
+}
+
+/// How the joints kept to their limits.
+#[derive(Clone, Debug, PartialEq)]
+pub struct LimitsProof {
+    /// What the limits are called.
+    pub title: String,
+    /// One for each joint that has a limit and keys.
+    pub rows: Vec<LimitRow>,
+}
+
 /// What changed in one clip.
 #[derive(Clone, Debug, PartialEq)]
 pub struct ClipProof {
@@ -63,6 +84,8 @@ pub struct ClipProof {
     pub found: Vec<FoundSnag>,
     /// Snags of the clip after that were not in the clip before.
     pub new: Vec<FoundSnag>,
+    /// How the joints kept to their limits, where there were any to hold them against.
+    pub limits: Option<LimitsProof>,
     /// Curves of the joints that changed most.
     pub curves: Vec<JointCurves>,
     /// Pictures.
@@ -118,7 +141,16 @@ impl ClipProof {
             snag.gone = !after.iter().any(|other| other.meets(snag));
         }
         let new = after.into_iter().filter(|snag| !before.iter().any(|other| other.meets(snag))).collect();
-        Self { label, index, measurement, found: before, new, curves: Vec::new(), pictures: Vec::new() }
+        Self {
+            label,
+            index,
+            measurement,
+            found: before,
+            new,
+            limits: None,
+            curves: Vec::new(),
+            pictures: Vec::new(),
+        }
     }
 
     /// How many snags are gone.

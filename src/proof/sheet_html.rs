@@ -4,10 +4,12 @@ use std::fmt::Write as _;
 
 use base64::Engine as _;
 
+use crate::limit::{Keeping, adult};
+
 use super::curve_svg::curve_svg;
 use super::measure::{JointMeasure, Measurement};
 use super::rates::Peak;
-use super::sheet::{CAUTION, ClipProof, FoundSnag, Sheet, SheetPicture};
+use super::sheet::{CAUTION, ClipProof, FoundSnag, LimitRow, LimitsProof, Sheet, SheetPicture};
 
 /// Light and dark, screen and paper. The planes' colours are Okabe and Ito's (2008).
 const STYLE: &str = include_str!("sheet.css");
@@ -84,6 +86,9 @@ fn clip_section(page: &mut String, clip: &ClipProof, is_one_of_several: bool) {
             page.push_str(&curve_svg(curves));
         }
         page.push_str("</div>\n");
+    }
+    if let Some(proof) = &clip.limits {
+        limits(page, proof);
     }
     joints(page, measurement);
     tips(page, measurement);
@@ -230,6 +235,46 @@ fn joints(page: &mut String, measurement: &Measurement) {
         joint_table(page, &rows[changed..]);
         page.push_str("</details>\n");
     }
+}
+
+fn limits(page: &mut String, proof: &LimitsProof) {
+    let is_beyond = |row: &&LimitRow| {
+        row.before.beyond_limit > 0 || row.after.as_ref().is_some_and(|after| after.beyond_limit > 0)
+    };
+    let _ = writeln!(page, "<h3>Limits before and after: {}</h3>", escape(&proof.title));
+    if proof.title == "adult" {
+        let _ = writeln!(page, "<p class=\"note\">{}</p>", adult::CAUTION);
+    }
+    let beyond: Vec<&LimitRow> = proof.rows.iter().filter(is_beyond).collect();
+    let within = proof.rows.len() - beyond.len();
+    if !beyond.is_empty() {
+        page.push_str(
+            "<div class=\"wide\"><table>\n<thead><tr><th rowspan=\"2\">Joint</th><th colspan=\"2\">Frames beyond the limit</th>\
+             <th colspan=\"2\">Degrees beyond it at most</th><th colspan=\"2\">Frames told as past-limit</th>\
+             <th colspan=\"2\">Degrees beyond that at most</th></tr>\n<tr>\
+             <th class=\"n\">before</th><th class=\"n\">after</th><th class=\"n\">before</th><th class=\"n\">after</th>\
+             <th class=\"n\">before</th><th class=\"n\">after</th><th class=\"n\">before</th><th class=\"n\">after</th></tr></thead>\n<tbody>\n",
+        );
+        for row in beyond {
+            let after =
+                |value: &dyn Fn(&Keeping) -> String| row.after.as_ref().map_or_else(|| "–".to_owned(), value);
+            let cells = |value: &dyn Fn(&Keeping) -> String| {
+                format!("<td class=\"n\">{}</td><td class=\"n\">{}</td>", value(&row.before), after(value))
+            };
+            let _ = writeln!(
+                page,
+                "<tr><td>{}</td>{}{}{}{}</tr>",
+                escape(&row.joint),
+                cells(&|kept| kept.beyond_limit.to_string()),
+                cells(&|kept| plain(kept.most_beyond_limit_rad.to_degrees(), 1)),
+                cells(&|kept| kept.beyond_fault.to_string()),
+                cells(&|kept| plain(kept.most_beyond_fault_rad.to_degrees(), 1)),
+            );
+        }
+        page.push_str("</tbody>\n</table></div>\n");
+    }
+    let _ =
+        writeln!(page, "<p>{within} of {} joints keep within their limits throughout.</p>", proof.rows.len());
 }
 
 fn joint_table(page: &mut String, rows: &[&JointMeasure]) {

@@ -2,9 +2,11 @@
 
 use serde_json::{Map, Value, json};
 
+use crate::limit::Keeping;
+
 use super::measure::{JointMeasure, Measurement, TipMeasure};
 use super::rates::Peak;
-use super::sheet::{CAUTION, ClipProof, FoundSnag, Sheet};
+use super::sheet::{CAUTION, ClipProof, FoundSnag, LimitRow, Sheet};
 
 /// The sheet as JSON text. Angles in degrees, times in seconds, lengths as in the file.
 ///
@@ -28,6 +30,7 @@ pub fn sheet_json(sheet: &Sheet) -> String {
     object.insert("joints".to_owned(), all(joint_rows));
     object.insert("tips".to_owned(), all(tip_rows));
     object.insert("snags".to_owned(), all(snag_rows));
+    object.insert("limits".to_owned(), all(limit_rows));
     object.insert("notes".to_owned(), json!(sheet.notes));
     object.insert("caution".to_owned(), json!(CAUTION));
     let mut text = serde_json::to_string_pretty(&Value::Object(object)).unwrap_or_default();
@@ -108,6 +111,28 @@ fn tip_rows(clip: &ClipProof) -> Vec<Value> {
         })
     };
     clip.measurement.tips.iter().map(row).collect()
+}
+
+fn limit_rows(clip: &ClipProof) -> Vec<Value> {
+    let Some(proof) = &clip.limits else { return Vec::new() };
+    let row = |row: &LimitRow| {
+        let after = |value: fn(&Keeping) -> Value| row.after.as_ref().map_or(Value::Null, value);
+        json!({
+            "clip": clip.label,
+            "limits": proof.title,
+            "joint": row.joint,
+            "frames": row.before.frames,
+            "frames_beyond_limit_before": row.before.beyond_limit,
+            "frames_beyond_limit_after": after(|kept| json!(kept.beyond_limit)),
+            "most_beyond_limit_before_deg": row.before.most_beyond_limit_rad.to_degrees(),
+            "most_beyond_limit_after_deg": after(|kept| json!(kept.most_beyond_limit_rad.to_degrees())),
+            "frames_past_limit_before": row.before.beyond_fault,
+            "frames_past_limit_after": after(|kept| json!(kept.beyond_fault)),
+            "most_past_limit_before_deg": row.before.most_beyond_fault_rad.to_degrees(),
+            "most_past_limit_after_deg": after(|kept| json!(kept.most_beyond_fault_rad.to_degrees())),
+        })
+    };
+    proof.rows.iter().map(row).collect()
 }
 
 fn snag_rows(clip: &ClipProof) -> Vec<Value> {

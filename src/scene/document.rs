@@ -2,7 +2,9 @@
 
 use std::collections::BTreeSet;
 use std::path::PathBuf;
+use std::sync::Arc;
 
+use crate::limit::Limits;
 use crate::snag::{Snag, SnagKind};
 
 use super::pass::{ClipRef, MendPass, Need, Pass, PassId, SnagMark};
@@ -29,6 +31,8 @@ pub struct ClipWork {
     pub passes: Vec<Pass>,
     /// Snags the user looked at and leaves as they are.
     pub left: Vec<SnagMark>,
+    /// The limits its joints are held against when snags are looked for.
+    pub limits: Option<Arc<Limits>>,
 }
 
 /// Everything a scene file holds, and everything undo brings back.
@@ -43,7 +47,7 @@ pub struct Document {
 impl ClipWork {
     /// Work on a clip that nothing has been done to.
     pub fn new(source: usize, clip: usize, name: impl Into<String>) -> Self {
-        Self { source, clip, name: name.into(), passes: Vec::new(), left: Vec::new() }
+        Self { source, clip, name: name.into(), passes: Vec::new(), left: Vec::new(), limits: None }
     }
 
     /// The pass that mends this kind.

@@ -1,5 +1,8 @@
 //! Edits: the only door to a changed document. Plain data, applied purely.
 
+use std::sync::Arc;
+
+use crate::limit::Limits;
 use crate::snag::Snag;
 
 use super::document::{ClipWork, Document, SourceRef};
@@ -98,6 +101,13 @@ pub enum Edit {
         /// Which.
         pass: PassId,
     },
+    /// Hold the joints against these limits when snags are looked for, or against none.
+    SetLimits {
+        /// Of which clip.
+        work: usize,
+        /// Which.
+        limits: Option<Arc<Limits>>,
+    },
     /// The source is to be found elsewhere, or has changed and is accepted.
     Relocate {
         /// Which source.
@@ -178,6 +188,8 @@ impl Edit {
             Self::SetAmount { amount, .. } => format!("Set amount to {:.0} %", amount * 100.0),
             Self::MovePass { .. } => "Move pass".to_owned(),
             Self::RemovePass { .. } => "Remove pass".to_owned(),
+            Self::SetLimits { limits: Some(limits), .. } => format!("Set limits: {}", limits.title),
+            Self::SetLimits { limits: None, .. } => "Set no limits".to_owned(),
             Self::Relocate { .. } => "Relocate source".to_owned(),
         }
     }
@@ -247,6 +259,7 @@ impl Edit {
                 let passes = &mut work_at(&mut next, *work)?.passes;
                 passes.remove(place_of(passes, *pass)?);
             }
+            Self::SetLimits { work, limits } => work_at(&mut next, *work)?.limits.clone_from(limits),
             Self::Relocate { source, to } => {
                 let count = next.sources.len();
                 let error = EditError::NoSuchSource { source_index: *source, count };

@@ -13,6 +13,6 @@ pub use evaluate::{Evaluation, Evaluator, Stage};
 pub use history::{History, Revision, Step};
 pub use library::{Library, Loaded};
 pub use pass::{
-    BlendForm, BlendPass, ClipRef, KeysPass, MendPass, Need, NoOthers, Others, Outcome, Pass, PassError,
-    PassId, PassKind, PassStep, PushPass, ReducePass, ResamplePass, Scope, SmoothPass, SnagMark,
+    BlendForm, BlendPass, ClipRef, KeysPass, LimitsPass, MendPass, Need, NoOthers, Others, Outcome, Pass,
+    PassError, PassId, PassKind, PassStep, PushPass, ReducePass, ResamplePass, Scope, SmoothPass, SnagMark,
 };

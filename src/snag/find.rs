@@ -9,7 +9,7 @@ use super::{
 /// Finds the snags of one kind in one joint of `clip` as it is, in the order of their keys.
 ///
 /// The kinds build on one another: each expects that the kinds before it in [`SnagKind::ALL`] are mended. Carriers and
-/// joints without keys have none.
+/// joints without keys have none. [`SnagKind::PastLimit`] needs limits: [`find_past_limit`](super::find_past_limit).
 pub fn find(clip: &Clip, joint: usize, kind: SnagKind) -> Vec<Snag> {
     let mut snags = match kind {
         SnagKind::BrokenValue => broken_value::find(clip, joint),
@@ -20,6 +20,8 @@ pub fn find(clip: &Clip, joint: usize, kind: SnagKind) -> Vec<Snag> {
         SnagKind::HalfTurn => half_turn::find(clip, joint),
         SnagKind::Spike => spike::find(clip, joint),
         SnagKind::Stuck => stuck::find(clip, joint),
+        // Only against limits: see `find_past_limit`.
+        SnagKind::PastLimit => Vec::new(),
     };
     snags.sort_by_key(|snag| (snag.first_key, snag.last_key));
     snags

@@ -1,11 +1,16 @@
 //! One fault that was found, as data.
 
+use crate::limit::JointLimit;
 use crate::rotor::Rotor;
 
 use super::SnagKind;
 
 /// What the mend of a snag does to the keys `first_key..=last_key` of its joint.
 #[derive(Clone, Copy, Debug, PartialEq)]
+#[expect(
+    clippy::large_enum_variant,
+    reason = "a snag is plain data that can be copied; its text is on the heap anyway"
+)]
 pub enum Remedy {
     /// Brings each key to unit length; no pose changes.
     Normalise,
@@ -25,6 +30,8 @@ pub enum Remedy {
     TakeOut(Rotor),
     /// As `TakeOut`, on the parent's side: `q ← offset · q`.
     TakeOutAbove(Rotor),
+    /// Bends each key softly from the comfort of this limit to its end, and fades the bend out beside them.
+    Clamp(JointLimit),
     /// Two ways are equally good: only a person can tell. The mend does nothing.
     Ask,
 }

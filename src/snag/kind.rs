@@ -23,11 +23,13 @@ pub enum SnagKind {
     Spike,
     /// A joint stands perfectly still inside its motion.
     Stuck,
+    /// Beyond the joint's swing or twist limit.
+    PastLimit,
 }
 
 impl SnagKind {
     /// All kinds, in mending order.
-    pub const ALL: [Self; 8] = [
+    pub const ALL: [Self; 9] = [
         Self::BrokenValue,
         Self::SignFlip,
         Self::Wrap,
@@ -36,6 +38,7 @@ impl SnagKind {
         Self::HalfTurn,
         Self::Spike,
         Self::Stuck,
+        Self::PastLimit,
     ];
 
     /// The name in files, on the command line and on screen.
@@ -49,6 +52,7 @@ impl SnagKind {
             Self::HalfTurn => "half-turn",
             Self::Spike => "spike",
             Self::Stuck => "stuck",
+            Self::PastLimit => "past-limit",
         }
     }
 
@@ -63,6 +67,7 @@ impl SnagKind {
             Self::HalfTurn => 'H',
             Self::Spike => 'S',
             Self::Stuck => 'K',
+            Self::PastLimit => 'P',
         }
     }
 
@@ -83,6 +88,7 @@ impl SnagKind {
             Self::Stuck => {
                 "The joint stands perfectly still for a while inside its motion: its signal dropped out."
             }
+            Self::PastLimit => "The joint tilts or twists beyond its limit.",
         }
     }
 
@@ -100,6 +106,9 @@ impl SnagKind {
             Self::Spike => "Draws the frames anew from the sound motion on both sides.",
             Self::Stuck => {
                 "Draws the frames anew from the motion on both sides and from what the other joints do meanwhile."
+            }
+            Self::PastLimit => {
+                "Bends the frames back softly, from where the joint is comfortable to its limit."
             }
         }
     }

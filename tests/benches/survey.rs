@@ -25,7 +25,7 @@ fn main() {
 }
 
 fn measure(name: &str, clip: &Clip, kinds: &[SnagKind], runs: usize) {
-    let options = SurveyOptions { kinds: kinds.to_vec() };
+    let options = SurveyOptions { kinds: kinds.to_vec(), ..SurveyOptions::default() };
     let mut found = 0;
     let mut millis: Vec<f64> = (0..runs)
         .map(|_| {

@@ -279,6 +279,8 @@ fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Opti
                 .collect();
             (with_poses(track, first, &off), planted((first, last)))
         }
+        // Needs limits: has tests of its own in `limits`.
+        SnagKind::PastLimit => return None,
         SnagKind::Stuck => {
             let (first, last) = moving_run(random, track)?;
             let held = first - 1;

@@ -45,7 +45,7 @@ fn do_scene(scene: &DemoScene, folder: &Path, output: &mut Output) -> Result<(),
 
     let mut input = input::read_back(&clip_path, output)?;
     let before = input.clip().clone();
-    let (mended, snags, mends) = mend_clip(&clip_path, &before, &Choice::safe())?;
+    let (mended, snags, mends) = mend_clip(&clip_path, &before, None, &Choice::safe())?;
     let label = input.source.clip_label(0);
     let report = ClipReport {
         path: &clip_path,
@@ -72,7 +72,7 @@ fn do_scene(scene: &DemoScene, folder: &Path, output: &mut Output) -> Result<(),
         output.say(&format!("wrote {}", written.display()));
     }
     let after = input::read_back(&written, output)?;
-    let sheet = sheet_of(&input, &after, &[(0, 0)], SheetFormat::Html)?;
+    let sheet = sheet_of(&input, &after, &[(0, 0)], &input.limits, SheetFormat::Html)?;
     for (extension, format) in [("html", SheetFormat::Html), ("json", SheetFormat::Json)] {
         write(&sheet, &folder.join(format!("{}-proof.{extension}", scene.name)), format, output)?;
     }

@@ -7,12 +7,14 @@ use crate::cli::DONE;
 use crate::cli::args::MendArgs;
 use crate::cli::error::CliError;
 use crate::cli::input::{self, Input};
+use crate::cli::limits::LimitsSource;
 use crate::cli::output::text::{ClipReport, MendReport};
 use crate::cli::output::{Output, json, text};
 use crate::cli::progress::ProgressLine;
 use crate::cli::targets;
 use crate::clip::Clip;
 use crate::exchange::{self, Format, Guard};
+use crate::limit::Limits;
 use crate::mend::{self, SurveyOptions};
 use crate::proof;
 use crate::snag::{Remedy, Snag, SnagKind};
@@ -41,6 +43,13 @@ pub(crate) fn run(args: &MendArgs, output: &mut Output) -> Result<u8, CliError> 
             }
         }
     }
+    let source = LimitsSource::open(args.limits.as_ref())?;
+    let mut limits = Vec::new();
+    for input in &inputs {
+        let own = source.fit(input, output)?;
+        source.check(args.kinds.as_deref(), &own)?;
+        limits.push(own);
+    }
     let sources: Vec<&Path> = inputs.iter().map(|input| input.source.path.as_path()).collect();
     let targets = targets::targets(&args.output, &sources)?;
     let guard = Guard { inputs: inputs.iter().flat_map(Input::files).collect(), force: args.force };
@@ -48,8 +57,8 @@ pub(crate) fn run(args: &MendArgs, output: &mut Output) -> Result<u8, CliError> 
     for target in &targets {
         guard.check(target)?;
     }
-    for (input, target) in inputs.iter().zip(&targets) {
-        let mended = mend_input(input, &choice)?;
+    for ((input, target), limits) in inputs.iter().zip(&targets).zip(&limits) {
+        let mended = mend_input(input, limits, &choice)?;
         let of_many = input.is_named.then(|| input.first());
         let written = exchange::write(&input.source, &mended.results, of_many, target, &guard)?;
         // Told when it is true.
@@ -63,7 +72,7 @@ pub(crate) fn run(args: &MendArgs, output: &mut Output) -> Result<u8, CliError> 
         if let (Some(sheet), Some(format)) = (&args.proof, sheet_format) {
             let path = targets::beside(sheet, target, inputs.len());
             guard.check(&path)?;
-            write_sheet(input, target, &path, format, output)?;
+            write_sheet(input, target, limits, &path, format, output)?;
         }
     }
     if failed > 0 {
@@ -121,10 +130,11 @@ impl Mended {
     }
 }
 
-fn mend_input(input: &Input, choice: &Choice) -> Result<Mended, CliError> {
+fn mend_input(input: &Input, limits: &[Option<Arc<Limits>>], choice: &Choice) -> Result<Mended, CliError> {
     let mut mended = Mended { results: input.results.clone(), told: Vec::new() };
     for &index in &input.chosen {
-        let (result, snags, mends) = mend_clip(&input.source.path, &input.results[index], choice)?;
+        let (result, snags, mends) =
+            mend_clip(&input.source.path, &input.results[index], limits[index].as_ref(), choice)?;
         mended.results[index] = result;
         mended.told.push((index, snags, mends));
     }
@@ -135,10 +145,12 @@ fn mend_input(input: &Input, choice: &Choice) -> Result<Mended, CliError> {
 pub(super) fn mend_clip(
     path: &Path,
     clip: &Arc<Clip>,
+    limits: Option<&Arc<Limits>>,
     choice: &Choice,
 ) -> Result<(Arc<Clip>, Vec<Snag>, MendReport), CliError> {
     let progress = ProgressLine::new(format!("{}: mending", path.display()));
-    let survey = mend::survey(clip, &SurveyOptions { kinds: choice.kinds.clone() }, &progress)?;
+    let options = SurveyOptions { kinds: choice.kinds.clone(), limits: limits.cloned() };
+    let survey = mend::survey(clip, &options, &progress)?;
     let mended: Vec<bool> = survey.snags.iter().map(|snag| choice.takes(snag)).collect();
     let takes_all =
         survey.snags.iter().zip(&mended).all(|(snag, &taken)| taken || snag.remedy == Remedy::Ask);

@@ -1,6 +1,7 @@
 //! `proof`: what changed between two clips, as a sheet.
 
 use std::path::Path;
+use std::sync::Arc;
 
 use crate::cli::DONE;
 use crate::cli::args::ProofArgs;
@@ -9,6 +10,7 @@ use crate::cli::input::{self, Input};
 use crate::cli::output::Output;
 use crate::cli::progress::ProgressLine;
 use crate::exchange::{Guard, disk};
+use crate::limit::Limits;
 use crate::proof::{self, FileFacts, ProofError, Sheet, sheet_html, sheet_json};
 
 /// The form of a sheet, told by the file's extension.
@@ -46,7 +48,7 @@ pub(crate) fn run(args: &ProofArgs, output: &mut Output) -> Result<u8, CliError>
     inputs.extend(after.files());
     Guard { inputs, force: args.force }.check(&args.output)?;
     let clips = [(before.first(), after.first())];
-    let sheet = sheet_of(&before, &after, &clips, format)?;
+    let sheet = sheet_of(&before, &after, &clips, &before.limits, format)?;
     write(&sheet, &args.output, format, output)?;
     Ok(DONE)
 }
@@ -55,6 +57,7 @@ pub(crate) fn run(args: &ProofArgs, output: &mut Output) -> Result<u8, CliError>
 pub(super) fn write_sheet(
     before: &Input,
     written: &Path,
+    limits: &[Option<Arc<Limits>>],
     path: &Path,
     format: SheetFormat,
     output: &mut Output,
@@ -66,7 +69,7 @@ pub(super) fn write_sheet(
     } else {
         before.chosen.iter().take(1).map(|&index| (index, 0)).collect()
     };
-    let sheet = sheet_of(before, &after, &clips, format)?;
+    let sheet = sheet_of(before, &after, &clips, limits, format)?;
     write(&sheet, path, format, output)
 }
 
@@ -75,6 +78,7 @@ pub(super) fn sheet_of(
     before: &Input,
     after: &Input,
     clips: &[(usize, usize)],
+    limits: &[Option<Arc<Limits>>],
     format: SheetFormat,
 ) -> Result<Sheet, CliError> {
     let facts = |input: &Input| FileFacts {
@@ -87,7 +91,7 @@ pub(super) fn sheet_of(
         .map(|&(b, a)| {
             let label = before.source.clip_label(b);
             let (before, after) = (&before.results[b], &after.results[a]);
-            let mut clip = proof::compare(before, after, label, b, &progress)?;
+            let mut clip = proof::compare_with(before, after, label, b, limits[b].as_ref(), &progress)?;
             if format == SheetFormat::Html {
                 clip.draw(before, after)?;
             }

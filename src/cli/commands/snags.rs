@@ -1,12 +1,16 @@
 //! `snags`: lists the faults of clips.
 
+use std::sync::Arc;
+
 use crate::cli::args::SnagsArgs;
 use crate::cli::error::CliError;
 use crate::cli::input::{self, Input};
+use crate::cli::limits::LimitsSource;
 use crate::cli::output::text::ClipReport;
 use crate::cli::output::{Output, json, text};
 use crate::cli::progress::ProgressLine;
 use crate::cli::{DONE, FOUND};
+use crate::limit::Limits;
 use crate::mend::{self, SurveyOptions};
 use crate::snag::{Snag, SnagKind};
 
@@ -14,12 +18,15 @@ use crate::snag::{Snag, SnagKind};
 pub(crate) fn run(args: &SnagsArgs, output: &mut Output) -> Result<u8, CliError> {
     let kinds = args.kinds.clone().unwrap_or_else(|| SnagKind::ALL.to_vec());
     let options = args.csv.open_options();
+    let limits = LimitsSource::open(args.limits.as_ref())?;
     let mut has_found = false;
     let mut failed = 0;
     for text in &args.clips {
         let listed = input::open(text, &options, output).and_then(|inputs| {
             for input in &inputs {
-                has_found |= list(input, &kinds, args.json, output)?;
+                let own = limits.fit(input, output)?;
+                limits.check(args.kinds.as_deref(), &own)?;
+                has_found |= list(input, &kinds, &own, args.json, output)?;
             }
             Ok(())
         });
@@ -39,11 +46,17 @@ pub(crate) fn run(args: &SnagsArgs, output: &mut Output) -> Result<u8, CliError>
     Ok(if has_found { FOUND } else { DONE })
 }
 
-fn list(input: &Input, kinds: &[SnagKind], is_json: bool, output: &mut Output) -> Result<bool, CliError> {
+fn list(
+    input: &Input,
+    kinds: &[SnagKind],
+    limits: &[Option<Arc<Limits>>],
+    is_json: bool,
+    output: &mut Output,
+) -> Result<bool, CliError> {
     let mut has_found = false;
     for &index in &input.chosen {
         let clip = &input.results[index];
-        let snags = snags_of(input, index, kinds)?;
+        let snags = snags_of(input, index, kinds, limits[index].clone())?;
         has_found |= !snags.is_empty();
         let label = input.source.clip_label(index);
         let report =
@@ -57,9 +70,14 @@ fn list(input: &Input, kinds: &[SnagKind], is_json: bool, output: &mut Output) -
     Ok(has_found)
 }
 
-fn snags_of(input: &Input, index: usize, kinds: &[SnagKind]) -> Result<Vec<Snag>, CliError> {
+fn snags_of(
+    input: &Input,
+    index: usize,
+    kinds: &[SnagKind],
+    limits: Option<Arc<Limits>>,
+) -> Result<Vec<Snag>, CliError> {
     let progress = ProgressLine::new(format!("{}: looking for snags", input.source.path.display()));
-    let options = SurveyOptions { kinds: kinds.to_vec() };
+    let options = SurveyOptions { kinds: kinds.to_vec(), limits };
     let survey = mend::survey(&input.results[index], &options, &progress)?;
     Ok(survey.snags)
 }

@@ -59,6 +59,7 @@ fn mend_name(snag: &Snag) -> &'static str {
         Remedy::ShortWay => "short-way",
         Remedy::TakeOut(_) => "take-out",
         Remedy::TakeOutAbove(_) => "take-out-above",
+        Remedy::Clamp(_) => "clamp",
         Remedy::Ask => "ask",
     }
 }

@@ -2,6 +2,8 @@
 
 use serde::{Deserialize, Serialize};
 
+pub(super) use super::super::limits::mirror::Joint as JointLimit;
+
 /// The newest version this program knows. 1 holds mends alone; 2 all other passes too. A scene is written in the oldest
 /// version that holds it, so that an older program opens what it can.
 pub(super) const VERSION: u32 = 2;
@@ -39,6 +41,16 @@ pub(super) struct ClipWork {
     pub(super) passes: Vec<Pass>,
     #[serde(default)]
     pub(super) left: Vec<Left>,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) limits: Option<Limits>,
+}
+
+#[derive(Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct Limits {
+    pub(super) title: String,
+    /// Number and label of each joint, and its limit.
+    pub(super) joints: Vec<(usize, String, JointLimit)>,
 }
 
 #[derive(Serialize, Deserialize)]
@@ -88,6 +100,7 @@ pub(super) enum Step {
         #[serde(default, skip_serializing_if = "Vec::is_empty")]
         keep_seconds: Vec<f64>,
     },
+    Limits(LimitsPass),
 }
 
 /// Another clip blended in.
@@ -188,6 +201,22 @@ pub(super) enum Spacing {
     Own((f64, f64), (f64, f64)),
 }
 
+#[derive(Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct LimitsPass {
+    pub(super) limits: Limits,
+    pub(super) clamp: Clamp,
+    pub(super) amount: f64,
+    pub(super) scope: Scope,
+}
+
+#[derive(Serialize, Deserialize)]
+pub(super) enum Clamp {
+    Soft,
+    Hard,
+    HardNearest,
+}
+
 /// Where a pass acts. What is left out means everywhere.
 #[derive(Serialize, Deserialize)]
 #[serde(deny_unknown_fields)]
@@ -209,7 +238,13 @@ fn is_zero(number: &f64) -> bool {
 impl Step {
     /// The oldest version that knows it.
     pub(super) fn version(&self) -> u32 {
-        if matches!(self, Self::Mend { .. }) { 1 } else { 2 }
+        /// The kinds of snag that version 1 knows.
+        const KINDS: [&str; 7] =
+            ["broken-value", "sign-flip", "wrap", "mirrored-angles", "long-way", "half-turn", "spike"];
+        match self {
+            Self::Mend { kind, .. } if KINDS.contains(&kind.as_str()) => 1,
+            _ => 2,
+        }
     }
 }
 
@@ -231,6 +266,7 @@ pub(super) struct Snag {
 }
 
 #[derive(Serialize, Deserialize)]
+#[expect(clippy::large_enum_variant, reason = "few at a time, and gone when the scene is read")]
 pub(super) enum Remedy {
     Normalise,
     Negate,
@@ -244,6 +280,8 @@ pub(super) enum Remedy {
     TakeOut(f64, f64, f64, f64),
     /// The same, on the parent's side.
     TakeOutAbove(f64, f64, f64, f64),
+    /// Softly, to this limit.
+    Clamp(JointLimit),
     Ask,
 }
 

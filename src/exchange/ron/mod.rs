@@ -2,6 +2,7 @@
 
 mod error;
 mod key_edits;
+mod limits;
 mod mirror;
 mod scene_file;
 mod steps;

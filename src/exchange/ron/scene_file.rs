@@ -9,6 +9,7 @@ use crate::skeleton::Skeleton;
 
 use super::super::disk;
 use super::error::SceneError;
+use super::limits::{limits_from, limits_to};
 use super::mirror;
 use super::steps::{kind_from, step_from, step_to};
 
@@ -26,6 +27,8 @@ pub struct SceneFile {
 pub struct WorkLabels {
     /// Of the snags that are left as they are.
     pub left: BTreeMap<usize, String>,
+    /// Of the joints that have limits.
+    pub limits: BTreeMap<usize, String>,
     /// Of each pass. Behind a pass that carries the clip to another skeleton the same number is another joint.
     pub passes: Vec<BTreeMap<usize, String>>,
 }
@@ -41,6 +44,9 @@ impl SceneFile {
         let mut lost = BTreeSet::new();
         let left = Fitted::new(&labels.left, skeleton, &mut lost);
         clip.left.retain_mut(|mark| left.now(mark.joint).map(|joint| mark.joint = joint).is_some());
+        let limited = Fitted::new(&labels.limits, skeleton, &mut lost);
+        clip.limits =
+            clip.limits.take().map(|limits| Arc::new(limits.renumbered(&|joint| limited.now(joint))));
         let unknown = BTreeMap::new();
         let mut current = Arc::clone(skeleton);
         for (place, pass) in clip.passes.iter_mut().enumerate() {
@@ -143,6 +149,10 @@ pub fn from_text(path: &Path, text: &str) -> Result<SceneFile, SceneError> {
 fn work_from(clip: mirror::ClipWork) -> Result<(ClipWork, WorkLabels), String> {
     let mut labels = WorkLabels::default();
     let mut work = ClipWork::new(clip.source, clip.clip, clip.name);
+    if let Some(limits) = &clip.limits {
+        work.limits = Some(Arc::new(limits_from(limits)?));
+        labels.limits = limits.joints.iter().map(|(joint, label, _)| (*joint, label.clone())).collect();
+    }
     for pass in clip.passes {
         let mut own: BTreeMap<usize, String> = pass.joints.into_iter().collect();
         if let mirror::Step::Mend { snags, .. } = &pass.step {
@@ -215,10 +225,12 @@ pub fn to_text(
                 keys: (mark.first_key, mark.last_key),
             })
             .collect(),
+        limits: work.limits.as_ref().map(|limits| limits_to(limits, &|joint| label(index, 0, joint))),
     });
     let clips: Vec<mirror::ClipWork> = clips.collect();
     let versions = clips.iter().flat_map(|clip| &clip.passes).map(|pass| pass.step.version());
-    let turnwright_scene = versions.max().unwrap_or(1);
+    let has_limits = clips.iter().any(|clip| clip.limits.is_some());
+    let turnwright_scene = versions.max().unwrap_or(1).max(if has_limits { 2 } else { 1 });
     let scene = mirror::Saved { turnwright_scene, sources: sources.collect(), clips };
     let pretty = ron::ser::PrettyConfig::new().depth_limit(7).struct_names(false).new_line("\n");
     let text = ron::ser::to_string_pretty(&scene, pretty)

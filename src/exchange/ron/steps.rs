@@ -10,6 +10,7 @@ use crate::scene::{
 use crate::snag::{Remedy, Snag, SnagKind};
 
 use super::key_edits::{key_edit_from, key_edit_to};
+use super::limits::{limit_from, limits_pass_from, limits_pass_to};
 use super::mirror;
 
 /// A step as the document holds it.
@@ -18,8 +19,9 @@ pub(super) fn step_from(step: mirror::Step) -> Result<PassStep, String> {
         mirror::Step::Mend { kind, amount, snags } => {
             let kind = kind_from(&kind)?;
             amount_in_range(amount)?;
-            let snags = snags.into_iter().map(|snag| snag_from(kind, snag)).collect();
-            MendPass { kind, snags, amount }.into()
+            let snags: Result<Vec<Snag>, String> =
+                snags.into_iter().map(|snag| snag_from(kind, snag)).collect();
+            MendPass { kind, snags: snags?, amount }.into()
         }
         mirror::Step::Resample { rate } => ResamplePass { rate }.into(),
         mirror::Step::Blend(blend) => blend_from(blend).into(),
@@ -51,6 +53,7 @@ pub(super) fn step_from(step: mirror::Step) -> Result<PassStep, String> {
             keep_secs: keep_seconds,
         }
         .into(),
+        mirror::Step::Limits(pass) => limits_pass_from(pass)?.into(),
     })
 }
 
@@ -81,6 +84,7 @@ pub(super) fn step_to(step: &PassStep, label: &dyn Fn(usize) -> String) -> mirro
             tip_bound: pass.tip_bound,
             keep_seconds: pass.keep_secs.clone(),
         },
+        PassStep::Limits(pass) => mirror::Step::Limits(limits_pass_to(pass, label)),
     }
 }
 
@@ -171,17 +175,17 @@ fn push_to(push: &Push) -> mirror::Push {
     }
 }
 
-fn scope_from(scope: mirror::Scope) -> Scope {
+pub(super) fn scope_from(scope: mirror::Scope) -> Scope {
     let span_secs = scope.seconds.map(|(first, last)| [first, last]);
     Scope { joints: scope.joints, span_secs, fade_secs: scope.fade_seconds }
 }
 
-fn scope_to(scope: &Scope) -> mirror::Scope {
+pub(super) fn scope_to(scope: &Scope) -> mirror::Scope {
     let seconds = scope.span_secs.map(|[first, last]| (first, last));
     mirror::Scope { joints: scope.joints.clone(), seconds, fade_seconds: scope.fade_secs }
 }
 
-fn amount_in_range(amount: f64) -> Result<(), String> {
+pub(super) fn amount_in_range(amount: f64) -> Result<(), String> {
     if (0.0..=1.0).contains(&amount) {
         Ok(())
     } else {
@@ -193,8 +197,8 @@ pub(super) fn kind_from(text: &str) -> Result<SnagKind, String> {
     text.parse().map_err(|error: crate::snag::NoSuchKind| error.to_string())
 }
 
-fn snag_from(kind: SnagKind, snag: mirror::Snag) -> Snag {
-    Snag {
+fn snag_from(kind: SnagKind, snag: mirror::Snag) -> Result<Snag, String> {
+    Ok(Snag {
         kind,
         joint: snag.joint_index,
         first_key: snag.keys.0,
@@ -215,11 +219,12 @@ fn snag_from(kind: SnagKind, snag: mirror::Snag) -> Snag {
             mirror::Remedy::ShortWay => Remedy::ShortWay,
             mirror::Remedy::TakeOut(s, yz, zx, xy) => Remedy::TakeOut(Rotor::new(s, yz, zx, xy)),
             mirror::Remedy::TakeOutAbove(s, yz, zx, xy) => Remedy::TakeOutAbove(Rotor::new(s, yz, zx, xy)),
+            mirror::Remedy::Clamp(limit) => Remedy::Clamp(limit_from(&snag.joint, &limit)?),
             mirror::Remedy::Ask => Remedy::Ask,
         },
         safe: snag.safe,
         text: snag.text,
-    }
+    })
 }
 
 fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
@@ -241,6 +246,7 @@ fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
             Remedy::ShortWay => mirror::Remedy::ShortWay,
             Remedy::TakeOut(r) => mirror::Remedy::TakeOut(r.s, r.yz, r.zx, r.xy),
             Remedy::TakeOutAbove(r) => mirror::Remedy::TakeOutAbove(r.s, r.yz, r.zx, r.xy),
+            Remedy::Clamp(limit) => mirror::Remedy::Clamp(mirror::JointLimit::of(&limit)),
             Remedy::Ask => mirror::Remedy::Ask,
         },
         safe: snag.safe,

@@ -92,5 +92,5 @@ impl PassKind for MendPass {
 }
 
 fn moves_poses(kind: SnagKind) -> bool {
-    matches!(kind, SnagKind::HalfTurn | SnagKind::Spike | SnagKind::Stuck)
+    matches!(kind, SnagKind::HalfTurn | SnagKind::Spike | SnagKind::Stuck | SnagKind::PastLimit)
 }

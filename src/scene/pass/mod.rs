@@ -4,6 +4,7 @@ mod blend;
 mod error;
 mod keys;
 mod kind;
+mod limits;
 mod mend;
 mod others;
 mod push;
@@ -16,6 +17,7 @@ pub use blend::{BlendForm, BlendPass};
 pub use error::PassError;
 pub use keys::KeysPass;
 pub use kind::{Outcome, PassKind};
+pub use limits::LimitsPass;
 pub use mend::{MendPass, SnagMark};
 pub use others::{ClipRef, Need, NoOthers, Others};
 pub use push::PushPass;
@@ -87,6 +89,8 @@ steps! {
     Push(PushPass),
     /// Keys edited by hand.
     Keys(KeysPass),
+    /// Keeps joints within their limits.
+    Limits(LimitsPass),
 }
 
 impl PassStep {

@@ -1,0 +1,112 @@
+//! `--limits`: which limits to hold the joints against.
+
+use std::collections::BTreeSet;
+use std::path::PathBuf;
+use std::str::FromStr;
+use std::sync::Arc;
+
+use crate::exchange::limits::LimitsFile;
+use crate::exchange::limits::read;
+use crate::limit::Limits;
+use crate::limit::adult;
+use crate::snag::SnagKind;
+
+use super::error::CliError;
+use super::input::Input;
+use super::output::Output;
+
+/// What was typed after `--limits`.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub(super) enum LimitsName {
+    /// The preset for adult human figures.
+    Adult,
+    /// A file of limits.
+    File(PathBuf),
+}
+
+impl FromStr for LimitsName {
+    type Err = std::convert::Infallible;
+
+    fn from_str(text: &str) -> Result<Self, Self::Err> {
+        Ok(if text == "adult" { Self::Adult } else { Self::File(PathBuf::from(text)) })
+    }
+}
+
+/// Limits that are ready to be fitted to clips.
+#[derive(Debug)]
+pub(super) enum LimitsSource {
+    /// None were asked for: those of a scene's clip are used.
+    OfScene,
+    /// The preset.
+    Adult,
+    /// A file that was read.
+    File(LimitsFile),
+}
+
+impl LimitsSource {
+    /// Reads the file, where it is one.
+    pub(super) fn open(name: Option<&LimitsName>) -> Result<Self, CliError> {
+        Ok(match name {
+            None => Self::OfScene,
+            Some(LimitsName::Adult) => Self::Adult,
+            Some(LimitsName::File(path)) => Self::File(read(path)?),
+        })
+    }
+
+    /// The limits for each clip of an input. Says in a line on stderr why there are none, or which joints a file names in vain.
+    pub(super) fn fit(
+        &self,
+        input: &Input,
+        output: &mut Output,
+    ) -> Result<Vec<Option<Arc<Limits>>>, CliError> {
+        let mut limits = vec![None; input.results.len()];
+        let mut told = BTreeSet::new();
+        for &index in &input.chosen {
+            let clip = &input.results[index];
+            limits[index] = match self {
+                Self::OfScene => input.limits[index].clone(),
+                Self::Adult => match adult::limits_for(clip) {
+                    Ok(adult) => Some(Arc::new(adult.limits)),
+                    Err(why) => {
+                        let why = why.to_string();
+                        if told.insert(why.clone()) {
+                            output.note(&input.source.path, &why);
+                        }
+                        None
+                    }
+                },
+                Self::File(file) => {
+                    let (limits, missing) = file.fit(&clip.skeleton)?;
+                    if !missing.is_empty() {
+                        let names =
+                            missing.iter().map(|name| format!("`{name}`")).collect::<Vec<_>>().join(", ");
+                        let note = format!("{} has no joint {names}; left out", input.source.path.display());
+                        if told.insert(note.clone()) {
+                            output.note(&file.path, &note);
+                        }
+                    }
+                    Some(Arc::new(limits))
+                }
+            };
+        }
+        Ok(limits)
+    }
+
+    /// Kinds that were named and need limits, where there are none at all.
+    pub(super) fn check(
+        &self,
+        kinds: Option<&[SnagKind]>,
+        limits: &[Option<Arc<Limits>>],
+    ) -> Result<(), CliError> {
+        let is_asked = kinds.is_some_and(|kinds| kinds.contains(&SnagKind::PastLimit));
+        if is_asked && matches!(self, Self::OfScene) && limits.iter().all(Option::is_none) {
+            return Err(CliError::Argument {
+                place: "--kinds past-limit".to_owned(),
+                expected: "limits to hold the joints against".to_owned(),
+                found: "none".to_owned(),
+                advice: "add --limits FILE or --limits adult",
+            });
+        }
+        Ok(())
+    }
+}
