@@ -85,7 +85,9 @@ impl Project {
     pub fn of_sources(serial: u64, sources: Vec<Arc<Source>>) -> Self {
         let mut document = Document::default();
         for (index, source) in sources.iter().enumerate() {
-            document.sources.push(SourceRef { path: source.path.clone(), sha256: source.sha256.clone() });
+            document
+                .sources
+                .push(SourceRef { path: source.path.clone(), sha256: source.sha256().to_owned() });
             let works = source.clips.iter().enumerate();
             document.works.extend(works.map(|(clip, _)| ClipWork::new(index, clip, source.clip_label(clip))));
         }

@@ -123,7 +123,7 @@ fn open_scene(
     let mut sources = Vec::new();
     for reference in &scene.document.sources {
         let source = exchange::open(&reference.path, options)?;
-        if source.sha256 != reference.sha256 {
+        if source.sha256() != reference.sha256 {
             output.note(&reference.path, "has changed since the scene was saved; its passes may not fit");
         }
         sources.push(source);

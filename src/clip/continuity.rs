@@ -14,6 +14,16 @@ use crate::rotor::{EulerOrder, Rotor};
 /// (Viterbi 1967, "Error bounds for convolutional codes and an asymptotically optimum decoding algorithm"); whole turns
 /// shift all that follows alike and so cost nothing later.
 pub fn continuous_angles(order: EulerOrder, rotors: &[Rotor], near: [f64; 3]) -> Vec<[f64; 3]> {
+    continuous_angles_to(order, rotors, near, None)
+}
+
+/// As [`continuous_angles`], for a stretch that is followed by the angles `end`: the step to them counts as well.
+pub fn continuous_angles_to(
+    order: EulerOrder,
+    rotors: &[Rotor],
+    near: [f64; 3],
+    end: Option<[f64; 3]>,
+) -> Vec<[f64; 3]> {
     let mut states: Vec<[State; 2]> = Vec::with_capacity(rotors.len());
     // Index of the last sound frame.
     let mut sound: Option<usize> = None;
@@ -39,12 +49,45 @@ pub fn continuous_angles(order: EulerOrder, rotors: &[Rotor], near: [f64; 3]) ->
         states.push(reached);
     }
     let mut angles = vec![[f64::NAN; 3]; rotors.len()];
-    let last = sound.map(|frame| (frame, usize::from(states[frame][1].cost < states[frame][0].cost)));
+    let last = sound.map(|frame| {
+        let cost = |state: &State| {
+            let step = |end: [f64; 3]| (0..3).map(|i| (end[i] - state.angles[i]).powi(2)).sum::<f64>();
+            state.cost + end.map_or(0.0, step)
+        };
+        (frame, usize::from(cost(&states[frame][1]) < cost(&states[frame][0])))
+    });
     let steps = std::iter::successors(last, |&(frame, state)| states[frame][state].from);
     for (frame, state) in steps {
         angles[frame] = states[frame][state].angles;
     }
     angles
+}
+
+/// Gives `degrees`, a file's angles, the turns of `changes`, `(key, rotor)`: of the equal triples those that make the
+/// steps least, over each run of neighbouring keys as a whole and with the sound keys on either side of it.
+///
+/// # Panics
+/// When a key does not exist.
+pub(super) fn refit(order: EulerOrder, degrees: &mut [[f64; 3]], changes: &[(usize, Rotor)]) {
+    let mut changes = changes.to_vec();
+    // Of changes to one key the last holds.
+    changes.reverse();
+    changes.sort_by_key(|&(key, _)| key);
+    changes.dedup_by_key(|&mut (key, _)| key);
+    for run in changes.chunk_by(|a, b| b.0 == a.0 + 1) {
+        let (first, end) = (run[0].0, run[0].0 + run.len());
+        let is_sound = |triple: &&[f64; 3]| triple.iter().all(|angle| angle.is_finite());
+        let radians = |triple: &[f64; 3]| triple.map(f64::to_radians);
+        let before = degrees[..first].iter().rev().find(is_sound).map(radians);
+        let after = degrees[end..].iter().find(is_sound).map(radians);
+        let own = degrees[first..end].iter().find(is_sound).map(radians);
+        let near = before.or(own).or(after).unwrap_or_default();
+        let rotors: Vec<Rotor> = run.iter().map(|&(_, rotor)| rotor).collect();
+        let found = continuous_angles_to(order, &rotors, near, after);
+        for (own, triple) in degrees[first..end].iter_mut().zip(found) {
+            *own = triple.map(f64::to_degrees);
+        }
+    }
 }
 
 /// The best way so far to one of the two triples of a frame.
@@ -119,6 +162,27 @@ mod tests {
             greedy.push(order.nearest_equal(order.from_rotor(*rotor, before[2]), before));
         }
         assert!(cost(&found) <= cost(&greedy) + 1e-12, "{} above {}", cost(&found), cost(&greedy));
+    }
+
+    #[test]
+    fn a_run_of_changes_meets_the_keys_on_both_sides() {
+        // From one side of the middle angle's right angle to the other and back: one step after the other would come out
+        // in the mirrored triples.
+        let order = EulerOrder::ZXY;
+        let made: Vec<[f64; 3]> = (0..40)
+            .map(|i| f64::from(i) * 0.2)
+            .map(|t| [20.0 * t, 100.0 * (0.4 * t).sin(), 370.0 - 15.0 * t])
+            .collect();
+        let mut degrees = made.clone();
+        let rotor = |key: usize| order.to_rotor(made[key].map(f64::to_radians));
+        let changes: Vec<(usize, Rotor)> = (5..30).chain(33..35).map(|key| (key, rotor(key))).collect();
+        for (key, _) in &changes {
+            degrees[*key] = [f64::NAN; 3];
+        }
+        refit(order, &mut degrees, &changes);
+        for (found, expected) in degrees.iter().zip(&made) {
+            assert!((0..3).all(|i| (found[i] - expected[i]).abs() < 1e-9), "{found:?} for {expected:?}");
+        }
     }
 
     #[test]

@@ -15,7 +15,7 @@ use crate::rotor::batch::Streams;
 pub struct Keys(Arc<Inner>);
 
 struct Inner {
-    stored: Arc<[Rotor]>,
+    stored: Vec<Rotor>,
     sound: OnceLock<Streams<f64, 4>>,
 }
 
@@ -47,33 +47,34 @@ impl Deref for Keys {
     }
 }
 
-impl From<Arc<[Rotor]>> for Keys {
-    fn from(stored: Arc<[Rotor]>) -> Self {
+/// The list stays where it is.
+impl From<Vec<Rotor>> for Keys {
+    fn from(stored: Vec<Rotor>) -> Self {
         Self(Arc::new(Inner { stored, sound: OnceLock::new() }))
     }
 }
 
-impl From<Vec<Rotor>> for Keys {
-    fn from(stored: Vec<Rotor>) -> Self {
-        Arc::<[Rotor]>::from(stored).into()
+impl From<Arc<[Rotor]>> for Keys {
+    fn from(stored: Arc<[Rotor]>) -> Self {
+        stored.to_vec().into()
     }
 }
 
 impl<const N: usize> From<[Rotor; N]> for Keys {
     fn from(stored: [Rotor; N]) -> Self {
-        Arc::<[Rotor]>::from(stored).into()
+        stored.to_vec().into()
     }
 }
 
 impl From<&[Rotor]> for Keys {
     fn from(stored: &[Rotor]) -> Self {
-        Arc::<[Rotor]>::from(stored).into()
+        stored.to_vec().into()
     }
 }
 
 impl FromIterator<Rotor> for Keys {
     fn from_iter<I: IntoIterator<Item = Rotor>>(rotors: I) -> Self {
-        rotors.into_iter().collect::<Arc<[Rotor]>>().into()
+        rotors.into_iter().collect::<Vec<Rotor>>().into()
     }
 }
 

@@ -3,6 +3,7 @@
 //! Knows nothing of files or screens. A clip read from a file is never changed; edits make a new one that shares
 //! what they did not touch.
 
+mod angle_rows;
 mod bulk;
 mod contact;
 mod continuity;
@@ -21,12 +22,13 @@ mod times;
 mod vector_track;
 mod worlds;
 
+pub use angle_rows::{AngleRows, AngleScratch, Growing};
 pub use bulk::turns_between;
 pub use contact::{
     ContactOptions, Contacts, Foot, FootPart, JointPoint, PlantedSpan, Slide, Trails, contacts, leg_lengths,
     median_place, slide_of, slides,
 };
-pub use continuity::continuous_angles;
+pub use continuity::{continuous_angles, continuous_angles_to};
 pub use copied_keys::CopiedKeys;
 pub use displace::{Push, PushFrame, pushed};
 pub use feet::standing_feet;

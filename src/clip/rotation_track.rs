@@ -4,6 +4,8 @@ use std::sync::Arc;
 
 use crate::rotor::{Axis, Bivector, EulerOrder, Rotor};
 
+use super::angle_rows::{AngleRows, AngleScratch};
+use super::continuity::refit;
 use super::keys::Keys;
 use super::path::{PathKind, Paths, Segments};
 use super::times::Times;
@@ -72,14 +74,10 @@ impl RotationTrack {
     /// A track of a file's angles, a triple in degrees for each key, with slerp between.
     /// Angles that are not finite give rotors that are not.
     pub fn from_angles(times: Times, angles: FileAngles) -> Self {
-        Self {
-            times,
-            keys: aligned(angles.degrees.iter().map(|&degrees| angles.rotor(degrees))),
-            paths: Paths::Every(PathKind::Slerp),
-            tangents: None,
-            segments: Segments::default(),
-            stored: Stored::Angles(angles),
-        }
+        let FileAngles { axes, order, degrees } = angles;
+        let mut rows = AngleRows::new(axes, order, degrees.len());
+        rows.push(degrees.len(), |row| degrees[row], &mut AngleScratch::default());
+        rows.finish(times)
     }
 
     /// A track of plane angles in degrees, a triple yz, zx, xy for each key, with slerp between.
@@ -111,7 +109,7 @@ impl RotationTrack {
     }
 
     /// This track with other rotors at some keys, `(key, rotor)`. All other keys keep their numbers. The file's own
-    /// form follows: of the equal triples the one nearest to the key before is taken.
+    /// form follows: of the equal triples those with the least steps are taken, over each run of neighbouring keys.
     ///
     /// # Panics
     /// When a key does not exist.
@@ -125,14 +123,7 @@ impl RotationTrack {
             Stored::Rotors => Stored::Rotors,
             Stored::Angles(angles) => {
                 let mut degrees = angles.degrees.to_vec();
-                for &(key, rotor) in changes {
-                    let sound = |triple: &&[f64; 3]| triple.iter().all(|angle| angle.is_finite());
-                    let reference =
-                        degrees[..key].iter().rev().find(sound).or_else(|| degrees[key..].iter().find(sound));
-                    let reference = reference.copied().unwrap_or_default().map(f64::to_radians);
-                    let triple = angles.order.from_rotor(rotor.normalize(), reference[2]);
-                    degrees[key] = angles.order.nearest_equal(triple, reference).map(f64::to_degrees);
-                }
+                refit(angles.order, &mut degrees, changes);
                 Stored::Angles(FileAngles { degrees: degrees.into(), ..angles.clone() })
             }
             Stored::PlaneAngles(degrees) => {

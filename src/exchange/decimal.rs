@@ -140,17 +140,24 @@ pub struct Stretch {
     pub has_point: bool,
 }
 
-/// Reads short numbers with blanks and line ends before each, from byte `from` on, until something else stands there.
-pub fn shorts(bytes: &[u8], from: usize, values: &mut Vec<f64>) -> Stretch {
+/// Reads short numbers with blanks and line ends before each, from byte `from` on, until something else stands there or
+/// `values` holds `most`.
+pub fn shorts(bytes: &[u8], from: usize, most: usize, values: &mut Vec<f64>) -> Stretch {
     let mut stretch = Stretch { end: from, has_point: false };
-    loop {
+    let wanted = most.saturating_sub(values.len());
+    for _ in 0..wanted {
         let rest = bytes.get(stretch.end..).unwrap_or_default();
-        let gap = rest.iter().take_while(|byte| matches!(byte, b' ' | b'\t' | b'\r' | b'\n')).count();
-        let Some(found) = rest.get(gap..).filter(|_| gap > 0).and_then(short) else { return stretch };
+        // Nearly always one blank.
+        let gap = match rest {
+            [b' ', next, ..] if *next > b' ' => 1,
+            _ => rest.iter().take_while(|byte| matches!(byte, b' ' | b'\t' | b'\r' | b'\n')).count(),
+        };
+        let Some(found) = rest.get(gap..).filter(|_| gap > 0).and_then(short) else { break };
         values.push(found.value);
         stretch.end = stretch.end.wrapping_add(gap).wrapping_add(found.length);
         stretch.has_point |= found.has_point;
     }
+    stretch
 }
 
 /// Appends a number in fixed notation with six decimals: the text of `{:.6}`, but that zero has no sign and what is no
@@ -298,11 +305,14 @@ mod tests {
     fn a_row_is_read_up_to_what_is_no_short_number() {
         let text = b"x 1.5 -2\r\n3\t.25 4 1e3 5";
         let mut values = Vec::new();
-        assert_eq!(shorts(text, 1, &mut values), Stretch { end: 17, has_point: true });
+        assert_eq!(shorts(text, 1, usize::MAX, &mut values), Stretch { end: 17, has_point: true });
         assert_eq!(values, [1.5, -2.0, 3.0, 0.25, 4.0]);
         values.clear();
-        assert_eq!(shorts(b"1 2", 0, &mut values), Stretch { end: 0, has_point: false });
-        assert_eq!(shorts(b" 1 2", 0, &mut values), Stretch { end: 4, has_point: false });
+        assert_eq!(shorts(b"1 2", 0, 9, &mut values), Stretch { end: 0, has_point: false });
+        assert_eq!(shorts(b" 1 2", 0, 9, &mut values), Stretch { end: 4, has_point: false });
+        // No more than there is room for.
+        assert_eq!(shorts(b" 1 2 3 4", 0, 4, &mut values), Stretch { end: 4, has_point: false });
+        assert_eq!(values, [1.0, 2.0, 1.0, 2.0]);
     }
 
     #[test]

@@ -59,6 +59,26 @@ pub fn read(path: &Path) -> Result<Vec<u8>, DiskError> {
     Ok(bytes)
 }
 
+/// Whether two paths lead to one file that exists: by whatever folders and symbolic links, or as two names of the same
+/// content (hard links).
+pub fn is_same_file(a: &Path, b: &Path) -> bool {
+    let by_path = matches!((a.canonicalize(), b.canonicalize()), (Ok(a), Ok(b)) if a == b);
+    by_path || is_hard_link(a, b)
+}
+
+#[cfg(unix)]
+fn is_hard_link(a: &Path, b: &Path) -> bool {
+    use std::os::unix::fs::MetadataExt;
+    let place = |path: &Path| std::fs::metadata(path).map(|file| (file.dev(), file.ino()));
+    matches!((place(a), place(b)), (Ok(a), Ok(b)) if a == b)
+}
+
+/// Other systems tell no number of a file.
+#[cfg(not(unix))]
+fn is_hard_link(_a: &Path, _b: &Path) -> bool {
+    false
+}
+
 /// One thing in a folder.
 #[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord)]
 pub struct Entry {
@@ -103,6 +123,14 @@ pub fn entries(folder: &Path) -> Result<Vec<Entry>, DiskError> {
 /// # Errors
 /// When the target is a folder or the system refuses; the old content then stays.
 pub fn write(path: &Path, bytes: &[u8]) -> Result<(), DiskError> {
+    write_with(path, |out| out.write_all(bytes))
+}
+
+/// As [`write`], of what `put` gives out piece by piece: a long text need not be at hand as a whole.
+///
+/// # Errors
+/// As [`write`], or when `put` fails.
+pub fn write_with<T>(path: &Path, put: impl FnOnce(&mut dyn Write) -> io::Result<T>) -> Result<T, DiskError> {
     if path.is_dir() {
         return Err(DiskError::Folder(path.to_owned()));
     }
@@ -115,14 +143,15 @@ pub fn write(path: &Path, bytes: &[u8]) -> Result<(), DiskError> {
     // The error's own words name the temporary file, which says nothing to whoever chose the target.
     let plain = |error: io::Error| failed(io::Error::from(error.kind()));
     let mut file = tempfile::Builder::new().prefix(".turnwright-").tempfile_in(folder).map_err(plain)?;
-    file.write_all(bytes).and_then(|()| file.as_file().sync_all()).map_err(failed)?;
+    let told = put(&mut file).map_err(plain)?;
+    file.as_file().sync_all().map_err(failed)?;
     let permissions =
         std::fs::metadata(path).map_or_else(|_| new_file_permissions(), |old| Some(old.permissions()));
     if let Some(permissions) = permissions {
         file.as_file().set_permissions(permissions).map_err(failed)?;
     }
     file.persist(path).map_err(|error| failed(error.error))?;
-    Ok(())
+    Ok(told)
 }
 
 /// A temporary file is private; a result is meant to be read by whom the folder's owner lets.

@@ -23,15 +23,12 @@ impl Guard {
         Self { inputs: vec![input.to_owned()], force: false }
     }
 
-    /// Fails when `target` is one of the inputs, by whatever path, and may not be replaced.
+    /// Fails when `target` is one of the inputs, by whatever path or link, and may not be replaced.
     ///
     /// # Errors
     /// [`WriteError::WouldReplaceInput`].
     pub fn check(&self, target: &Path) -> Result<(), WriteError> {
-        let same = |input: &PathBuf| match (input.canonicalize(), target.canonicalize()) {
-            (Ok(input), Ok(target)) => input == target,
-            _ => false,
-        };
+        let same = |input: &PathBuf| disk::is_same_file(input, target);
         if !self.force && self.inputs.iter().any(same) {
             return Err(WriteError::WouldReplaceInput { path: target.to_owned() });
         }
@@ -128,6 +125,17 @@ pub fn write(
     guard: &Guard,
 ) -> Result<Written, WriteError> {
     guard.check(target)?;
+    if Format::of(target)? == Format::Bvh {
+        // The text of a long clip is large, and goes out piece by piece.
+        let clip = one_of(source, results, choice)?;
+        let notes = disk::write_with(target, |out| match &source.origin {
+            Origin::Bvh(document) if has_same_joints(source, clip) => {
+                bvh::write_to(document, &source.clips[0], clip, out)
+            }
+            _ => bvh::from_clip_to(clip, out),
+        })?;
+        return Ok(Written { path: target.to_owned(), beside: None, notes });
+    }
     let mut encoded = encode(source, results, choice, target)?;
     take_along(source, target, &mut encoded);
     let beside = match &encoded.beside {
@@ -146,8 +154,9 @@ pub fn write(
 /// The bytes that [`write()`] would write.
 ///
 /// `results` has one clip for each clip of the source. Within a format (glTF and GLB count as one) the source's own
-/// file is patched: what did not change keeps its bytes or text. Into another format, and for clips that were resampled,
-/// a new file is made; where that holds one clip only, it is the one of index `choice`, else the first.
+/// file is patched: what did not change keeps its bytes or text; rows of other times are written anew under the file's own
+/// head. Into another format a new file is made; where that holds one clip only, it is the one of index `choice`, else the
+/// first.
 ///
 /// # Errors
 /// As [`write()`], but for the disk.
@@ -157,10 +166,7 @@ pub fn encode(
     choice: Option<usize>,
     target: &Path,
 ) -> Result<Encoded, WriteError> {
-    if results.len() != source.clips.len() {
-        let (expected, found) = (source.clips.len(), results.len());
-        return Err(WriteError::Count { path: source.path.clone(), expected, found });
-    }
+    check_count(source, results)?;
     let format = Format::of(target)?;
     let stem = target.file_stem().map(|stem| stem.to_string_lossy().into_owned()).unwrap_or_default();
     let gltf_error = |source| WriteError::Gltf { path: target.to_owned(), source };
@@ -171,19 +177,32 @@ pub fn encode(
             let output = gltf::write_as(document, &pairs, &stem, form(format)).map_err(gltf_error)?;
             Ok(Encoded::from(output))
         }
-        (Origin::Bvh(document), Format::Bvh) if same_frames(&source.clips[0], &results[0]) => {
+        (Origin::Bvh(document), Format::Bvh) if has_same_joints(source, &results[0]) => {
             Ok(Encoded::alone(bvh::write(document, &source.clips[0], &results[0])))
         }
-        (Origin::Csv(document), Format::Csv) if same_frames(&source.clips[0], &results[0]) => {
+        (Origin::Csv(document), Format::Csv) if has_same_joints(source, &results[0]) => {
             Ok(Encoded::alone(csv::write(document, &source.clips[0], &results[0])))
         }
-        _ => {
-            let clip = results
-                .get(choice.unwrap_or(0))
-                .ok_or_else(|| WriteError::NoClip { path: source.path.clone() })?;
-            new_file(clip, format, &stem, target)
-        }
+        _ => new_file(one_of(source, results, choice)?, format, &stem, target),
     }
+}
+
+fn check_count(source: &Source, results: &[Arc<Clip>]) -> Result<(), WriteError> {
+    let (expected, found) = (source.clips.len(), results.len());
+    if expected == found {
+        return Ok(());
+    }
+    Err(WriteError::Count { path: source.path.clone(), expected, found })
+}
+
+/// The clip of a file that holds one only.
+fn one_of<'r>(
+    source: &Source,
+    results: &'r [Arc<Clip>],
+    choice: Option<usize>,
+) -> Result<&'r Arc<Clip>, WriteError> {
+    check_count(source, results)?;
+    results.get(choice.unwrap_or(0)).ok_or_else(|| WriteError::NoClip { path: source.path.clone() })
 }
 
 /// Copies what the result still refers to into the target's folder, where it is another one and does not have it yet:
@@ -225,7 +244,7 @@ fn new_file(clip: &Clip, format: Format, stem: &str, target: &Path) -> Result<En
     }
 }
 
-/// Whether a result still has its source's frames, so that it can be patched in.
-fn same_frames(source: &Clip, result: &Clip) -> bool {
-    source.grid == result.grid && source.joints.len() == result.joints.len()
+/// Whether a result has the joints of its source's only clip, so that the file's own layout can hold it.
+fn has_same_joints(source: &Source, result: &Clip) -> bool {
+    source.clips.first().is_some_and(|clip| clip.joints.len() == result.joints.len())
 }

@@ -2,7 +2,7 @@
 
 use std::fmt;
 use std::path::{Path, PathBuf};
-use std::sync::Arc;
+use std::sync::{Arc, OnceLock};
 
 use crate::clip::Clip;
 
@@ -119,14 +119,14 @@ pub struct Source {
     pub path: PathBuf,
     /// Its format.
     pub format: Format,
-    /// SHA-256 of its bytes in hexadecimal.
-    pub sha256: String,
     /// Its clips, in the file's order; a glTF file may have none.
     pub clips: Vec<Arc<Clip>>,
     /// What was odd.
     pub notes: Vec<Note>,
     /// What is needed to give it back.
     pub(super) origin: Origin,
+    /// Its hash, once somebody asked.
+    sha256: OnceLock<String>,
 }
 
 /// The file in its own format.
@@ -138,6 +138,20 @@ pub(super) enum Origin {
 }
 
 impl Source {
+    /// SHA-256 of the file's bytes in hexadecimal. Computed when it is first asked for, which takes a while for a large file.
+    pub fn sha256(&self) -> &str {
+        self.sha256.get_or_init(|| disk::hash(self.bytes()))
+    }
+
+    /// The file's bytes as they were read.
+    pub fn bytes(&self) -> &[u8] {
+        match &self.origin {
+            Origin::Gltf(document) => document.bytes(),
+            Origin::Bvh(document) => document.bytes(),
+            Origin::Csv(document) => document.bytes(),
+        }
+    }
+
     /// What a clip is called in lists: its name, or `#INDEX` where it has none.
     pub fn clip_label(&self, index: usize) -> String {
         match self.clips.get(index).map(|clip| clip.name.as_str()) {
@@ -171,7 +185,6 @@ pub fn open(path: &Path, options: &OpenOptions) -> Result<Source, OpenError> {
 /// As [`open`].
 pub fn open_bytes(path: &Path, bytes: Vec<u8>, options: &OpenOptions) -> Result<Source, OpenError> {
     let format = Format::of(path)?;
-    let sha256 = disk::hash(&bytes);
     let name = path.file_stem().map(|stem| stem.to_string_lossy().into_owned()).unwrap_or_default();
     let at = || path.to_owned();
     let (origin, clips, notes) = match format {
@@ -198,7 +211,7 @@ pub fn open_bytes(path: &Path, bytes: Vec<u8>, options: &OpenOptions) -> Result<
         }
     };
     let clips = clips.into_iter().map(Arc::new).collect();
-    Ok(Source { path: at(), format, sha256, clips, notes, origin })
+    Ok(Source { path: at(), format, clips, notes, origin, sha256: OnceLock::new() })
 }
 
 /// The skeleton of `NAME_rot.csv` from a `NAME_hierarchy.csv` beside it. One that can't be read is no companion.

@@ -1,109 +1,29 @@
 //! How fast are motion numbers read and written, and how long does a whole file take to open?
 //!
-//! `cargo bench --no-default-features --bench exchange` prints the median of many runs, in nanoseconds a number, with the
-//! standard library on the same numbers in the same run; with `--test` everything runs once on little.
-#![expect(clippy::print_stdout, reason = "the numbers are what a bench is for")]
+//! `cargo bench --no-default-features --bench exchange`. One thread, time of the processor, a number an element; the peer is
+//! the standard library on the same numbers.
+
+mod cpu_time;
 
 use std::fmt::Write as _;
 use std::hint::black_box;
 use std::io::Write as _;
 use std::path::Path;
-use std::time::Instant;
+use std::time::Duration;
 
+use cpu_time::CpuTime;
+use criterion::{BatchSize, Throughput, criterion_group, criterion_main};
 use turnwright::exchange::decimal::{push_six_decimals, shorts};
 use turnwright::exchange::{OpenOptions, bvh, gltf, open_bytes};
 
+type Criterion = criterion::Criterion<CpuTime>;
+
 const JOINTS: usize = 60;
-
-fn main() {
-    let is_test = std::env::args().any(|argument| argument == "--test");
-    let (frames, runs) = if is_test { (20, 1) } else { (6_000, 21) };
-    let values = values(frames * (3 + 3 * JOINTS));
-    let text = bvh_text(&values);
-    let start = text.find("Frame Time: 0.008333333\n").expect("it was just written") + 23;
-    let motion = &text.as_bytes()[start..];
-    println!("{} numbers, {:.1} bytes each", values.len(), motion.len() as f64 / values.len() as f64);
-
-    let mut own = Vec::with_capacity(values.len());
-    let mut standard = Vec::with_capacity(values.len());
-    let n = values.len();
-    let [ours, std_parse] = medians(
-        runs,
-        n,
-        [
-            &mut || {
-                own.clear();
-                black_box(shorts(black_box(motion), 0, &mut own));
-            },
-            &mut || {
-                standard.clear();
-                let text = std::str::from_utf8(black_box(motion)).expect("ASCII");
-                standard.extend(text.split_whitespace().map(|word| word.parse::<f64>().expect("a number")));
-            },
-        ],
-    );
-    assert!(own.iter().map(|v| v.to_bits()).eq(standard.iter().map(|v| v.to_bits())), "not bit-equal");
-    report("read: ours", ours, "split_whitespace and str::parse", std_parse);
-
-    let (mut bytes, mut standard) = (Vec::with_capacity(16 * n), Vec::with_capacity(16 * n));
-    let [ours, std_write] = medians(
-        runs,
-        n,
-        [
-            &mut || {
-                bytes.clear();
-                for &value in black_box(&values) {
-                    push_six_decimals(value, &mut bytes);
-                    bytes.push(b' ');
-                }
-            },
-            &mut || {
-                standard.clear();
-                for &value in black_box(&values) {
-                    write!(standard, "{value:.6} ").expect("a Vec takes all");
-                }
-            },
-        ],
-    );
-    assert!(bytes == standard, "not the same text");
-    report("write: ours", ours, "{:.6}", std_write);
-
-    let path = Path::new("bench.bvh");
-    let file = text.as_bytes().to_vec();
-    let [parse, read, open] = medians(
-        runs,
-        n,
-        [
-            &mut || {
-                own.clear();
-                black_box(shorts(black_box(motion), 0, &mut own));
-            },
-            &mut || drop(black_box(bvh::read(black_box(&file), "bench").expect("it reads"))),
-            &mut || {
-                drop(black_box(open_bytes(path, file.clone(), &OpenOptions::default()).expect("it opens")));
-            },
-        ],
-    );
-    report("bvh::read, turns made", read, "its numbers alone", parse);
-    report("open_bytes, hash and copy of the bytes too", open, "its numbers alone", parse);
-    report("open_bytes", open, "split_whitespace and str::parse of its numbers", std_parse);
-
-    let (_, clip, _) = bvh::read(&file, "bench").expect("it reads");
-    let glb = gltf::from_clip(&clip, "bench").expect("it is written").bytes;
-    println!("a .glb of {:.1} MB:", glb.len() as f64 / 1e6);
-    let [copy, read] = medians(
-        runs,
-        n,
-        [&mut || drop(black_box(glb.clone())), &mut || {
-            let no_files = |_: &str| Err(String::new());
-            drop(black_box(gltf::read(black_box(&glb[..]), "bench", &no_files).expect("it reads")));
-        }],
-    );
-    report("gltf::read", read, "one copy of the bytes", copy);
-}
+const FRAMES: usize = 6000;
+const COLUMNS: usize = 3 + 3 * JOINTS;
 
 /// Angles and lengths with six decimals of their own.
-fn values(n: usize) -> Vec<f64> {
+fn values() -> Vec<f64> {
     let mut noise = 1_u64;
     let mut next = || {
         noise = noise.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1);
@@ -111,10 +31,11 @@ fn values(n: usize) -> Vec<f64> {
         let value = (share - 0.5) * 360.0;
         (value * 1e6).round() / 1e6
     };
-    (0..n).map(|_| next()).collect()
+    (0..FRAMES * COLUMNS).map(|_| next()).collect()
 }
 
-fn bvh_text(values: &[f64]) -> String {
+/// A file of these numbers, and where they begin in it.
+fn bvh_text(values: &[f64]) -> (String, usize) {
     let mut text = "HIERARCHY\n".to_owned();
     let channels = "Zrotation Xrotation Yrotation";
     for joint in 0..JOINTS {
@@ -126,34 +47,137 @@ fn bvh_text(values: &[f64]) -> String {
     }
     text += "End Site\n{\nOFFSET 0 10 0\n}\n";
     text += &"}\n".repeat(JOINTS);
-    let columns = 3 + 3 * JOINTS;
-    let _ = write!(text, "MOTION\nFrames: {}\nFrame Time: 0.008333333\n", values.len() / columns);
-    for row in values.chunks_exact(columns) {
+    let _ = write!(text, "MOTION\nFrames: {}\nFrame Time: 0.008333333", values.len() / COLUMNS);
+    let start = text.len();
+    text.push('\n');
+    for row in values.chunks_exact(COLUMNS) {
         for (column, value) in row.iter().enumerate() {
             let gap = if column == 0 { "" } else { " " };
             let _ = write!(text, "{gap}{value:.6}");
         }
         text.push('\n');
     }
-    text
+    (text, start)
 }
 
-/// Nanoseconds a number, of each task the median of its runs; the tasks take turns, so that a busy machine is fair.
-fn medians<const N: usize>(runs: usize, numbers: usize, mut tasks: [&mut dyn FnMut(); N]) -> [f64; N] {
-    let mut nanos = [const { Vec::new() }; N];
-    for _ in 0..runs {
-        for (task, nanos) in tasks.iter_mut().zip(&mut nanos) {
-            let start = Instant::now();
-            task();
-            nanos.push(start.elapsed().as_secs_f64() * 1e9 / numbers as f64);
-        }
-    }
-    nanos.map(|mut nanos| {
-        nanos.sort_by(f64::total_cmp);
-        nanos[nanos.len() / 2]
-    })
+fn read(c: &mut Criterion) {
+    let values = values();
+    let (text, start) = bvh_text(&values);
+    let motion = &text.as_bytes()[start..];
+    let n = values.len();
+    let (mut own, mut standard) = (Vec::with_capacity(n), Vec::with_capacity(n));
+    let mut group = c.benchmark_group("read");
+    group.throughput(Throughput::Elements(n as u64));
+    group.bench_function("split_whitespace and str::parse", |b| {
+        b.iter(|| {
+            standard.clear();
+            let text = std::str::from_utf8(black_box(motion)).expect("ASCII");
+            standard.extend(text.split_whitespace().map(|word| word.parse::<f64>().expect("a number")));
+        });
+    });
+    group.bench_function("its numbers", |b| {
+        b.iter(|| {
+            own.clear();
+            black_box(shorts(black_box(motion), 0, usize::MAX, &mut own));
+        });
+    });
+    let is_whole = own.len() == standard.len();
+    assert!(
+        is_whole && own.iter().map(|v| v.to_bits()).eq(standard.iter().map(|v| v.to_bits())),
+        "not bit-equal"
+    );
+    let file = text.as_bytes();
+    group.bench_function("bvh::read", |b| {
+        let read = |bytes: Vec<u8>| bvh::read(bytes, "bench").expect("it reads");
+        b.iter_batched(|| file.to_vec(), read, BatchSize::PerIteration);
+    });
+    group.bench_function("open_bytes of a BVH file", |b| {
+        let path = Path::new("bench.bvh");
+        let open = |bytes: Vec<u8>| open_bytes(path, bytes, &OpenOptions::default()).expect("it opens");
+        b.iter_batched(|| file.to_vec(), open, BatchSize::PerIteration);
+    });
+    group.finish();
 }
 
-fn report(what: &str, own: f64, peer: &str, other: f64) {
-    println!("{what}: {own:.1} ns a number; {peer}: {other:.1} ns; ratio {:.2}", other / own);
+fn write(c: &mut Criterion) {
+    let values = values();
+    let n = values.len();
+    let (mut own, mut standard) = (Vec::with_capacity(16 * n), Vec::with_capacity(16 * n));
+    let mut group = c.benchmark_group("write");
+    group.throughput(Throughput::Elements(n as u64));
+    group.bench_function("{:.6}", |b| {
+        b.iter(|| {
+            standard.clear();
+            for &value in black_box(&values) {
+                write!(standard, "{value:.6} ").expect("a Vec takes all");
+            }
+        });
+    });
+    group.bench_function("ours", |b| {
+        b.iter(|| {
+            own.clear();
+            for &value in black_box(&values) {
+                push_six_decimals(value, &mut own);
+                own.push(b' ');
+            }
+        });
+    });
+    assert!(own == standard, "not the same text");
+    group.finish();
 }
+
+/// What is opened of a GLB that is nearly all mesh.
+fn glb(c: &mut Criterion) {
+    let (text, _) = bvh_text(&values()[..200 * COLUMNS]);
+    let (_, clip, _) = bvh::read(text.as_bytes(), "bench").expect("it reads");
+    let small = gltf::from_clip(&clip, "bench").expect("it is written").bytes;
+    let large = with_mesh(&small, 50 << 20);
+    let mut group = c.benchmark_group("a .glb of 50 MB of mesh");
+    group.throughput(Throughput::Bytes(large.len() as u64));
+    group.bench_function("one copy of it", |b| {
+        b.iter_batched(|| (), |()| black_box(&large).clone(), BatchSize::PerIteration);
+    });
+    let read = |bytes: Vec<u8>| gltf::read(bytes, "bench", &|_| Err(String::new())).expect("it reads");
+    group.bench_function("gltf::read", |b| {
+        b.iter_batched(|| large.clone(), read, BatchSize::PerIteration);
+    });
+    group.bench_function("gltf::read without the mesh", |b| {
+        b.iter_batched(|| small.clone(), read, BatchSize::PerIteration);
+    });
+    group.finish();
+}
+
+/// A GLB with `n` more bytes in its binary chunk, as a view that no animation uses.
+fn with_mesh(glb: &[u8], n: usize) -> Vec<u8> {
+    let word = |at: usize| u32::from_le_bytes(*glb[at..].first_chunk().expect("four bytes")) as usize;
+    let (json_len, bin_start) = (word(12), 20 + word(12));
+    let mut json: serde_json::Value = serde_json::from_slice(&glb[20..20 + json_len]).expect("JSON");
+    let old = word(bin_start);
+    json["buffers"][0]["byteLength"] = (old + n).into();
+    let view = serde_json::json!({ "buffer": 0, "byteOffset": old, "byteLength": n });
+    json["bufferViews"].as_array_mut().expect("views").push(view);
+    let mut text = json.to_string().into_bytes();
+    text.resize(text.len().next_multiple_of(4), b' ');
+    let mut large = Vec::with_capacity(28 + text.len() + old + n);
+    large.extend_from_slice(b"glTF\x02\0\0\0");
+    large.extend_from_slice(&((28 + text.len() + old + n) as u32).to_le_bytes());
+    large.extend_from_slice(&(text.len() as u32).to_le_bytes());
+    large.extend_from_slice(b"JSON");
+    large.extend_from_slice(&text);
+    large.extend_from_slice(&((old + n) as u32).to_le_bytes());
+    large.extend_from_slice(b"BIN\0");
+    large.extend_from_slice(&glb[bin_start + 8..bin_start + 8 + old]);
+    large.resize(large.len() + n, 7);
+    large
+}
+
+criterion_group! {
+    name = benches;
+    config = criterion::Criterion::default()
+        .with_measurement(CpuTime)
+        .sample_size(15)
+        .warm_up_time(Duration::from_millis(300))
+        .measurement_time(Duration::from_secs(3));
+    targets = read, write, glb
+}
+criterion_main!(benches);

@@ -337,7 +337,7 @@ impl Window {
             ));
             return;
         }
-        let to = SourceRef { path: source.path.clone(), sha256: source.sha256.clone() };
+        let to = SourceRef { path: source.path.clone(), sha256: source.sha256().to_owned() };
         if let Some(state) = project.sources.get_mut(index) {
             *state = SourceState::Ready(source);
         }

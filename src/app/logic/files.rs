@@ -118,7 +118,7 @@ impl Window {
                     return None;
                 }
                 match exchange::open(&address.path, &OpenOptions::default()) {
-                    Ok(source) => sources.push(Arc::new(source)),
+                    Ok(source) => sources.push(hashed(source)),
                     Err(error) => {
                         return Some(match unknown_header(&error) {
                             Some((path, names)) => {
@@ -138,7 +138,7 @@ impl Window {
         self.jobs.submit(Slot::Open, move |_| {
             let csv = CsvOptions { columns: Some(columns), time_unit: unit, ..CsvOptions::default() };
             let result = exchange::open(&path, &OpenOptions { csv });
-            let result = result.map(|source| vec![Arc::new(source)]).map_err(|error| error.to_string());
+            let result = result.map(hashed).map(|source| vec![source]).map_err(|error| error.to_string());
             Some(Answer::Opened { result, clip: None })
         });
     }
@@ -149,7 +149,7 @@ impl Window {
             let scene = &demo::SCENES[0];
             let path = Path::new(scene.clip_file);
             let result = exchange::open_bytes(path, scene.clip_bytes.to_vec(), &OpenOptions::default());
-            let result = result.map(|source| vec![Arc::new(source)]).map_err(|error| error.to_string());
+            let result = result.map(hashed).map(|source| vec![source]).map_err(|error| error.to_string());
             Some(Answer::Opened { result, clip: None })
         });
     }
@@ -294,7 +294,7 @@ impl Window {
         let serial = project.serial;
         self.jobs.submit(Slot::Relocate, move |_| {
             let result = exchange::open(&path, &OpenOptions::default());
-            let result = result.map(Arc::new).map_err(|error| error.to_string());
+            let result = result.map(hashed).map_err(|error| error.to_string());
             Some(Answer::Relocated { serial, index, result })
         });
     }
@@ -323,6 +323,12 @@ fn unknown_header(error: &OpenError) -> Option<(PathBuf, Vec<String>)> {
     Some((path.clone(), names))
 }
 
+/// The hash of a large file takes a while: it is made here, on the worker's thread, and not when the window asks.
+fn hashed(source: Source) -> Arc<Source> {
+    source.sha256();
+    Arc::new(source)
+}
+
 fn absolute(path: &Path) -> String {
     std::path::absolute(path).unwrap_or_else(|_| path.to_owned()).display().to_string()
 }
@@ -333,7 +339,7 @@ fn open_scene(path: PathBuf) -> Result<OpenedScene, String> {
     for known in &scene.document.sources {
         sources.push(match exchange::open(&known.path, &OpenOptions::default()) {
             Err(error) => SourceState::Missing(error.to_string()),
-            Ok(source) if source.sha256 == known.sha256 => SourceState::Ready(Arc::new(source)),
+            Ok(source) if source.sha256() == known.sha256 => SourceState::Ready(Arc::new(source)),
             Ok(source) => SourceState::Changed(Arc::new(source)),
         });
     }

@@ -83,7 +83,7 @@ pub(super) fn sheet_of(
 ) -> Result<Sheet, CliError> {
     let facts = |input: &Input| FileFacts {
         file: input.source.path.display().to_string(),
-        sha256: input.source.sha256.clone(),
+        sha256: input.source.sha256().to_owned(),
     };
     let progress = ProgressLine::new(format!("{}: measuring", after.source.path.display()));
     let clips = clips

@@ -1,6 +1,6 @@
 //! A new BVH text from any clip.
 
-use std::io::Write as _;
+use std::io::{self, Write};
 
 use glam::DVec3;
 
@@ -11,6 +11,9 @@ use crate::exchange::losses;
 use crate::rotor::{EulerOrder, Rotor};
 use crate::skeleton::WorldJoint;
 
+/// Bytes that are collected before they are given on.
+pub(super) const PORTION: usize = 1 << 18;
+
 /// Writes any clip as BVH: one row for each frame of its grid, channels Z X Y.
 ///
 /// Joints stand parallel to the world at rest, so turns are written away from the rest pose in world axes and offsets are
@@ -19,6 +22,17 @@ use crate::skeleton::WorldJoint;
 /// Angles run on from frame to frame without whole turns or mirrored triples where there is a way round. Sizes are lost;
 /// uneven times are sampled at an even rate. Notes tell of both, with the largest difference.
 pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
+    let mut bytes = Vec::new();
+    // Writing into a Vec can't fail.
+    let notes = from_clip_to(clip, &mut bytes).unwrap_or_default();
+    (bytes, notes)
+}
+
+/// As [`from_clip`], into `out`: of the text never more than a portion is at hand.
+///
+/// # Errors
+/// When `out` fails.
+pub fn from_clip_to(clip: &Clip, out: &mut dyn Write) -> io::Result<Vec<Note>> {
     let mut notes = Vec::new();
     let skeleton = &clip.skeleton;
     let (times, step_secs) = frame_times(&clip.grid, &mut notes);
@@ -30,25 +44,8 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
         .map(|&joint| rest[joint].position().distance(rest[listed[0]].position()))
         .fold(0.0_f64, f64::max);
 
-    let mut turns: Vec<Vec<Rotor>> = vec![Vec::with_capacity(times.len()); skeleton.len()];
-    let mut places: Vec<Vec<DVec3>> = vec![Vec::with_capacity(times.len()); skeleton.len()];
-    for &time in &times {
-        let world = clip.world_at(time);
-        for &joint in &listed {
-            let parent = parents[joint];
-            let away = |joint: usize| (world[joint].rotation * rest[joint].rotation.reverse()).normalize();
-            let parent_away = parent.map_or(Rotor::IDENTITY, away);
-            turns[joint].push((parent_away.reverse() * away(joint)).normalize());
-            places[joint].push(parent_away.reverse().apply(limb(&world, joint, parent)));
-        }
-    }
-    let moves: Vec<bool> = (0..skeleton.len())
-        .map(|joint| {
-            let own = limb(&rest, joint, parents[joint]);
-            let tolerance = 1e-6 * size.max(own.length());
-            parents[joint].is_none() || places[joint].iter().any(|place| place.distance(own) > tolerance)
-        })
-        .collect();
+    let motion = Motion::of(clip, &times, &rest, &parents, size);
+    let moves: Vec<bool> = motion.places.iter().map(Option::is_some).collect();
 
     let decimals = length_decimals(size);
     let mut bytes = Vec::new();
@@ -56,8 +53,12 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
     let order = text.write(&mut bytes, &listed);
     // Writing into a Vec can't fail.
     let _ = write!(bytes, "MOTION\nFrames: {}\nFrame Time: {}\n", times.len(), frame_time_text(step_secs));
-    let angles: Vec<Vec<[f64; 3]>> =
-        order.iter().map(|&joint| continuous_angles(EulerOrder::ZXY, &turns[joint], [0.0; 3])).collect();
+    let Motion { mut turns, places } = motion;
+    // The turns of a joint go as soon as its angles are there.
+    let angles: Vec<Vec<[f64; 3]>> = order
+        .iter()
+        .map(|&joint| continuous_angles(EulerOrder::ZXY, &std::mem::take(&mut turns[joint]), [0.0; 3]))
+        .collect();
     for frame in 0..times.len() {
         let mut is_first = true;
         let mut put = |value: f64, decimals: usize, bytes: &mut Vec<u8>| {
@@ -73,8 +74,8 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
             bytes.extend_from_slice(if is_zero { text.trim_start_matches('-') } else { &text }.as_bytes());
         };
         for (&joint, angles) in order.iter().zip(&angles) {
-            if moves[joint] {
-                for value in places[joint][frame].to_array() {
+            if let Some(places) = &places[joint] {
+                for value in places[frame].to_array() {
                     put(value, decimals, &mut bytes);
                 }
             }
@@ -83,7 +84,12 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
             }
         }
         bytes.push(b'\n');
+        if bytes.len() >= PORTION {
+            out.write_all(&bytes)?;
+            bytes.clear();
+        }
     }
+    out.write_all(&bytes)?;
     let inner: Vec<&str> = order
         .iter()
         .filter(|&&joint| moves[joint] && parents[joint].is_some())
@@ -98,7 +104,71 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
     }
     losses::sizes(clip, &mut notes);
     losses::resampling(clip, &times, &mut notes);
-    (bytes, notes)
+    Ok(notes)
+}
+
+/// What the rows will say, joint by joint.
+struct Motion {
+    /// Turns away from the rest pose in world axes.
+    turns: Vec<Vec<Rotor>>,
+    /// Places relative to the parent, of roots and of joints whose limb is not the rest limb all the time.
+    places: Vec<Option<Vec<DVec3>>>,
+}
+
+impl Motion {
+    fn of(clip: &Clip, times: &[f64], rest: &[WorldJoint], parents: &[Option<usize>], size: f64) -> Self {
+        let listed: Vec<usize> = clip.skeleton.listed().collect();
+        let mut turns: Vec<Vec<Rotor>> = vec![Vec::new(); parents.len()];
+        let mut places: Vec<Option<Vec<DVec3>>> = vec![None; parents.len()];
+        for &joint in &listed {
+            turns[joint].reserve_exact(times.len());
+            if parents[joint].is_none() {
+                places[joint] = Some(Vec::with_capacity(times.len()));
+            }
+        }
+        let away = |world: &[WorldJoint], joint: usize| {
+            (world[joint].rotation * rest[joint].rotation.reverse()).normalize()
+        };
+        let place = |world: &[WorldJoint], joint: usize, parent_away: Rotor| {
+            parent_away.reverse().apply(limb(world, joint, parents[joint]))
+        };
+        // Joints that begin to move after the first frame.
+        let mut late: Vec<usize> = Vec::new();
+        for (frame, &time) in times.iter().enumerate() {
+            let world = clip.world_at(time);
+            for &joint in &listed {
+                let parent_away = parents[joint].map_or(Rotor::IDENTITY, |parent| away(&world, parent));
+                turns[joint].push((parent_away.reverse() * away(&world, joint)).normalize());
+                let own = limb(rest, joint, parents[joint]);
+                let now = place(&world, joint, parent_away);
+                let is_off = || now.distance(own) > 1e-6 * size.max(own.length());
+                if let Some(places) = &mut places[joint] {
+                    places.push(now);
+                } else if is_off() && !late.contains(&joint) {
+                    if frame == 0 {
+                        places[joint] = Some(vec![now]);
+                    } else {
+                        late.push(joint);
+                    }
+                }
+            }
+        }
+        if !late.is_empty() {
+            for &joint in &late {
+                places[joint] = Some(Vec::with_capacity(times.len()));
+            }
+            for &time in times {
+                let world = clip.world_at(time);
+                for &joint in &late {
+                    let parent_away = parents[joint].map_or(Rotor::IDENTITY, |parent| away(&world, parent));
+                    if let Some(places) = &mut places[joint] {
+                        places.push(place(&world, joint, parent_away));
+                    }
+                }
+            }
+        }
+        Self { turns, places }
+    }
 }
 
 /// From the parent, or the scene's origin, to the joint, in world axes.
@@ -145,7 +215,7 @@ fn frame_times(grid: &FrameGrid, notes: &mut Vec<Note>) -> (Vec<f64>, f64) {
 }
 
 /// Enough digits to read the very same number again, and at least 9 significant ones.
-fn frame_time_text(step_secs: f64) -> String {
+pub(super) fn frame_time_text(step_secs: f64) -> String {
     let shortest = step_secs.to_string();
     let decimals = shortest.split('.').nth(1).map_or(0, str::len);
     if decimals >= 10 { shortest } else { format!("{step_secs:.10}") }

@@ -16,13 +16,14 @@
 mod create;
 mod error;
 mod read;
+mod rows;
 mod scanner;
 mod syntax;
 #[cfg(test)]
 mod tests;
 mod write;
 
-pub use create::from_clip;
+pub use create::{from_clip, from_clip_to};
 pub use error::{BvhError, BvhErrorKind};
 pub use read::{Document, read};
-pub use write::write;
+pub use write::{write, write_to};

@@ -5,16 +5,16 @@ use std::fmt;
 use std::sync::Arc;
 
 use glam::DVec3;
-use rayon::prelude::*;
 
-use crate::clip::{Clip, FileAngles, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
+use crate::clip::{Clip, FrameGrid, JointTracks, Times};
 use crate::exchange::Note;
 use crate::exchange::turns::Turns;
-use crate::rotor::{Axis, Rotor};
+use crate::rotor::Axis;
 use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use super::error::{BvhError, BvhErrorKind};
-use super::scanner::{Scanner, is_line_end, quoted};
+use super::rows::Rows;
+use super::scanner::{Scanner, Tally, is_line_end, quoted};
 use super::syntax::{Channel, JointSyntax, MotionHead, hierarchy, motion_head, skip_comments};
 
 /// Seconds from frame to frame where a file does not say.
@@ -48,6 +48,11 @@ impl fmt::Debug for Document {
 }
 
 impl Document {
+    /// The file as it was.
+    pub fn bytes(&self) -> &[u8] {
+        &self.bytes
+    }
+
     /// Numbers of one frame.
     pub(super) fn columns(&self) -> usize {
         self.channels.iter().map(Vec::len).sum()
@@ -97,39 +102,51 @@ pub fn read<'b>(
         frames: 0,
         decimal_comma: false,
     };
-    let values = if let Some(head) = &head {
-        rows(&mut scanner, &document, &joints, head, &mut notes)?
+    let mut rows = Rows::new(&joints);
+    if let Some(head) = &head {
+        read_rows(&mut scanner, &document, &joints, head, &mut rows, &mut notes)?;
     } else {
         notes.push(Note::new("end of file", "expected MOTION, found none: a skeleton without a clip"));
-        Vec::new()
-    };
-    document.frames = values.len().checked_div(document.columns()).unwrap_or(0);
+    }
+    document.frames = rows.done();
     decimal_marks(&scanner, &mut document, &mut notes)?;
     let step_secs = frame_secs(&scanner, head.as_ref(), &mut notes);
-    about_numbers(&scanner, &document, &joints, &values, &mut notes);
-    let clip = clip(&document, &joints, &values, step_secs, name, &mut notes);
+    about_numbers(&scanner, &document, &joints, rows.largest_deg, &mut notes);
+    let clip = clip(rows, &joints, step_secs, name, &mut notes);
     Ok((document, clip, notes))
 }
 
-/// All numbers of the complete frames.
-fn rows(
+/// Reads the numbers of all complete frames into the tracks of the joints.
+fn read_rows(
     scanner: &mut Scanner<'_>,
     document: &Document,
     joints: &[JointSyntax],
     head: &MotionHead,
+    rows: &mut Rows,
     notes: &mut Vec<Note>,
-) -> Result<Vec<f64>, BvhError> {
+) -> Result<(), BvhError> {
     let columns = document.columns();
-    let rest = document.bytes.len() - document.rows_start;
     let announced = head.frames.unwrap_or(0);
-    // A number takes a digit and a blank at least: what a file announces beyond that it can't have.
-    let mut values = Vec::with_capacity(announced.saturating_mul(columns).min(rest / 2 + 1));
+    // A frame time that is no number is told as such.
+    scanner.oddities.missing = Tally::default();
+    // How many frames there will be: as many as the file says where its length bears that out, else as many as it has room
+    // for if the rest is like what was read.
+    let expected = |rows: &Rows, pos: usize| {
+        let read = (pos - document.rows_start).max(1) as f64;
+        let whole = (document.bytes.len() - document.rows_start) as f64;
+        let likely = ((rows.len() / columns.max(1)) as f64 * (whole / read)).ceil() as usize;
+        if announced.abs_diff(likely) <= likely / 8 { announced } else { likely }
+    };
     loop {
         if columns > 0 {
-            scanner.plain_numbers(&mut values);
+            scanner.plain_numbers(rows.tile_len, &mut rows.tile);
+            if rows.tile.len() >= rows.tile_len {
+                rows.hand_out(expected(rows, scanner.pos()));
+                continue;
+            }
         }
         match scanner.number() {
-            Ok(Some(number)) if columns > 0 => values.push(number.value),
+            Ok(Some(number)) if columns > 0 => rows.tile.push(number.value),
             Ok(Some(number)) => {
                 let text = "expected no numbers, as no joint has channels, found some: left out";
                 notes.push(Note::new(scanner.line_of(number.start), text));
@@ -142,8 +159,8 @@ fn rows(
                 if scanner.pos() != start {
                     continue;
                 }
-                let frames = values.len().checked_div(columns).unwrap_or(announced);
-                let is_between_frames = columns == 0 || values.len() % columns == 0;
+                let frames = rows.len().checked_div(columns).unwrap_or(announced);
+                let is_between_frames = columns == 0 || rows.len() % columns == 0;
                 if is_between_frames && frames >= announced && frames > 0 {
                     let text = format!(
                         "expected the end of the file after {frames} frames, found {}: left as it is",
@@ -153,17 +170,17 @@ fn rows(
                     break;
                 }
                 let error = scanner.unexpected("a number");
-                return Err(in_motion(error, values.len(), document, joints));
+                return Err(in_motion(error, rows.len(), document, joints));
             }
         }
     }
-    let complete = values.len().checked_div(columns).unwrap_or(0);
-    let left_over = values.len() - complete * columns;
+    let complete = rows.len().checked_div(columns).unwrap_or(0);
+    rows.hand_out(complete);
+    let left_over = rows.tile.len();
     if left_over > 0 {
         uneven_line(document, joints, scanner.pos())?;
         let text = format!("expected {columns} numbers, found {left_over}: the frame is left out");
         notes.push(Note::new(format!("frame {complete}"), text));
-        values.truncate(complete * columns);
     }
     match head.frames {
         None => notes.push(Note::new(
@@ -176,7 +193,7 @@ fn rows(
         )),
         Some(_) => {}
     }
-    Ok(values)
+    Ok(())
 }
 
 /// The error with the frame and the joint that number `index` of the motion belongs to.
@@ -274,7 +291,7 @@ fn about_numbers(
     scanner: &Scanner<'_>,
     document: &Document,
     joints: &[JointSyntax],
-    values: &[f64],
+    largest_deg: f64,
     notes: &mut Vec<Note>,
 ) {
     let run_together = scanner.oddities.run_together;
@@ -285,23 +302,17 @@ fn about_numbers(
         );
         notes.push(Note::new(scanner.line_of(run_together.first), text));
     }
-    let missing = values.iter().filter(|value| value.is_nan()).count();
-    if missing > 0 {
-        let text = format!("expected finite numbers, found {missing} that are not: those are missing");
-        notes.push(Note::new(scanner.line_of(scanner.oddities.missing.first), text));
+    let missing = scanner.oddities.missing;
+    if missing.count > 0 {
+        let text =
+            format!("expected finite numbers, found {} that are not: those are missing", missing.count);
+        notes.push(Note::new(scanner.line_of(missing.first), text));
     }
-    let angle_columns: Vec<bool> =
-        document.channels.iter().flatten().map(|channel| matches!(channel, Channel::Rotation(_))).collect();
-    if angle_columns.iter().filter(|&&is_angle| is_angle).count() >= 9 && document.frames >= 8 {
-        let largest = values
-            .chunks_exact(angle_columns.len())
-            .flat_map(|row| row.iter().zip(&angle_columns))
-            .filter(|&(_, &is_angle)| is_angle)
-            .fold(0.0_f64, |largest, (value, _)| largest.max(value.abs()));
-        if largest > 0.1 && largest < 7.0 {
-            let text = format!("expected degrees, found no angle above {largest:.2}: these may be radians");
-            notes.push(Note::new("motion", text));
-        }
+    let is_angle = |channel: &&Channel| matches!(channel, Channel::Rotation(_));
+    let n_angles = document.channels.iter().flatten().filter(is_angle).count();
+    if n_angles >= 9 && document.frames >= 8 && largest_deg > 0.1 && largest_deg < 7.0 {
+        let text = format!("expected degrees, found no angle above {largest_deg:.2}: these may be radians");
+        notes.push(Note::new("motion", text));
     }
     if joints.len() > 2 && joints[1..].iter().all(|joint| joint.offset == [0.0; 3]) {
         let places = |joint: &JointSyntax| joint.channels.iter().any(|c| matches!(c, Channel::Position(_)));
@@ -311,21 +322,9 @@ fn about_numbers(
     }
 }
 
-fn clip(
-    document: &Document,
-    joints: &[JointSyntax],
-    values: &[f64],
-    step_secs: f64,
-    name: &str,
-    notes: &mut Vec<Note>,
-) -> Clip {
-    let columns = document.columns();
-    let times = Times::Even { step_secs, count: document.frames };
-    let tracks: Vec<Arc<JointTracks>> = joints
-        .par_iter()
-        .zip(document.first_columns())
-        .map(|(joint, first)| Arc::new(joint_tracks(joint, first, values, columns, &times)))
-        .collect();
+fn clip(rows: Rows, joints: &[JointSyntax], step_secs: f64, name: &str, notes: &mut Vec<Note>) -> Clip {
+    let times = Times::Even { step_secs, count: rows.done() };
+    let tracks = rows.finish(&times);
     for joint in joints {
         let turns = turns_of(&joint.channels);
         if turns.groups.len() > 3 {
@@ -357,79 +356,12 @@ fn clip(
     }
 }
 
-/// What the columns of a joint, from `first` on, say of it.
-fn joint_tracks(
-    joint: &JointSyntax,
-    first: usize,
-    values: &[f64],
-    columns: usize,
-    times: &Times,
-) -> JointTracks {
-    let rows = || values.chunks_exact(columns.max(1));
-    let turns = turns_of(&joint.channels);
-    let [a, b, c]: [&[usize]; 3] =
-        std::array::from_fn(|i| turns.groups.get(i).map_or(&[][..], |(_, columns)| columns));
-    let angle = |row: &[f64], columns: &[usize]| match columns {
-        [] => 0.0,
-        [one] => row[first + one],
-        several => group_sum(row, first, several),
-    };
-    let angles = |row: &[f64]| [angle(row, a), angle(row, b), angle(row, c)];
-    let rotation = match turns.order() {
-        _ if times.is_empty() => None,
-        None => None,
-        Some(order) if turns.groups.len() <= 3 => {
-            let degrees: Arc<[[f64; 3]]> = rows().map(angles).collect();
-            let axes = turns.axes().collect();
-            Some(RotationTrack::from_angles(times.clone(), FileAngles { axes, order, degrees }))
-        }
-        Some(_) => {
-            let mut before = Rotor::IDENTITY;
-            let mut key = |row: &[f64]| {
-                let degrees: Vec<f64> = turns.groups.iter().map(|(_, c)| group_sum(row, first, c)).collect();
-                let rotor = turns.rotor(&degrees).aligned_to(before);
-                if rotor.is_finite() {
-                    before = rotor;
-                }
-                rotor
-            };
-            let keys: Arc<[Rotor]> = rows().map(&mut key).collect();
-            Some(RotationTrack::from_rotors(times.clone(), keys))
-        }
-    };
-    let places: Vec<(usize, usize)> = joint
-        .channels
-        .iter()
-        .enumerate()
-        .filter_map(|(column, channel)| match channel {
-            Channel::Position(axis) => Some((axis.index(), first + column)),
-            Channel::Rotation(_) | Channel::Size => None,
-        })
-        .collect();
-    let place = |row: &[f64]| {
-        let mut place = joint.offset;
-        for &(axis, column) in &places {
-            place[axis] = row[column];
-        }
-        DVec3::from_array(place)
-    };
-    let translation = (!places.is_empty() && !times.is_empty()).then(|| {
-        let keys: Arc<[DVec3]> = rows().map(place).collect();
-        VectorTrack::straight(times.clone(), keys)
-    });
-    JointTracks { rotation, translation, scale: None }
-}
-
 /// The turns that a joint's channels make; columns count from its first channel.
 pub(super) fn turns_of(channels: &[Channel]) -> Turns {
     Turns::new(channels.iter().enumerate().filter_map(|(column, channel)| match channel {
         Channel::Rotation(axis) => Some((column, *axis)),
         Channel::Position(_) | Channel::Size => None,
     }))
-}
-
-fn group_sum(row: &[f64], first: usize, columns: &[usize]) -> f64 {
-    columns.iter().map(|column| row[first + column]).sum()
 }
 
 /// A few programs mean positions as an addition to `OFFSET`: it shows where an inner joint's stay near 0 and its OFFSET

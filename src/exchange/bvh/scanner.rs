@@ -135,9 +135,9 @@ impl<'a> Scanner<'a> {
         self.take_while(|byte| byte.is_ascii_alphabetic())
     }
 
-    /// Past all plain numbers that come next, each behind a blank: nearly the whole of a motion part.
-    pub(super) fn plain_numbers(&mut self, values: &mut Vec<f64>) {
-        let stretch = shorts(self.bytes, self.pos, values);
+    /// Past the plain numbers that come next, each behind a blank, until there are `most`: nearly the whole of a motion part.
+    pub(super) fn plain_numbers(&mut self, most: usize, values: &mut Vec<f64>) {
+        let stretch = shorts(self.bytes, self.pos, most, values);
         if stretch.has_point {
             self.oddities.points.add(self.pos);
         }

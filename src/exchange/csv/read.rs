@@ -50,6 +50,11 @@ impl fmt::Debug for Document {
 }
 
 impl Document {
+    /// The file as it was.
+    pub fn bytes(&self) -> &[u8] {
+        &self.bytes
+    }
+
     /// The columns of a joint's angles in their order.
     pub(super) fn turns(&self, joint: usize) -> Turns {
         turns_of(&self.columns.roles, joint)

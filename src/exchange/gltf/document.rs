@@ -60,6 +60,11 @@ pub(super) struct Binding {
 }
 
 impl Document {
+    /// The file as it was.
+    pub fn bytes(&self) -> &[u8] {
+        &self.original
+    }
+
     /// The skeleton that all clips of the document share.
     pub fn skeleton(&self) -> &Arc<Skeleton> {
         &self.skeleton
