@@ -85,9 +85,11 @@ impl Project {
     pub fn of_sources(serial: u64, sources: Vec<Arc<Source>>) -> Self {
         let mut document = Document::default();
         for (index, source) in sources.iter().enumerate() {
-            document
-                .sources
-                .push(SourceRef { path: source.path.clone(), sha256: source.sha256().to_owned() });
+            document.sources.push(SourceRef {
+                path: source.path.clone(),
+                sha256: source.sha256().to_owned(),
+                reading: source.reading.clone(),
+            });
             let works = source.clips.iter().enumerate();
             document.works.extend(works.map(|(clip, _)| ClipWork::new(index, clip, source.clip_label(clip))));
         }
@@ -104,6 +106,25 @@ impl Project {
     ) -> Self {
         let findings = document.works.iter().map(|_| Findings::default()).collect();
         Self { serial, history: History::new(document), sources, scene_path, findings }
+    }
+
+    /// Measures each file's clips from the rest pose that the document says.
+    pub fn follow_readings(&mut self) {
+        let document = Arc::clone(self.document());
+        for (state, known) in self.sources.iter_mut().zip(&document.sources) {
+            let (SourceState::Ready(source) | SourceState::Changed(source)) = state else { continue };
+            let wanted = known.reading.rest.unwrap_or_else(|| source.usual_rest());
+            if source.rest != wanted
+                && let Some(other) = source.with_rest(wanted)
+            {
+                *source = Arc::new(other);
+            }
+        }
+    }
+
+    /// The file of the clip on show.
+    pub fn source_of(&self, work: usize) -> Option<&Arc<Source>> {
+        self.sources.get(self.document().works.get(work)?.source)?.source()
     }
 
     /// The current document.

@@ -7,6 +7,7 @@ use egui::{Key, KeyboardShortcut, Modifiers};
 use crate::exchange::csv::{NamedColumns, TimeUnit};
 use crate::raster::Camera;
 use crate::scene::{Edit, PassId, PassStep};
+use crate::skeleton::RestChoice;
 
 use super::file_picker::Purpose;
 use super::jobs::Slot;
@@ -644,6 +645,8 @@ pub enum Command {
     ExportTo(PathBuf),
     /// Use this file as a source.
     RelocateTo(usize, PathBuf),
+    /// Measure the turns of the clip on show, and of all others of its file, from this pose.
+    ChooseRest(RestChoice),
     /// Ask with the desktop's own dialog.
     Browse(Purpose),
     /// Take away the dialog.

@@ -71,6 +71,11 @@ impl Window {
             Command::SaveTo(path) => self.save_to(path),
             Command::ExportTo(path) => self.export_to(path),
             Command::RelocateTo(source, path) => self.relocate_to(source, path),
+            Command::ChooseRest(rest) => {
+                if let Some(source) = self.bench.work().map(|work| work.source) {
+                    self.edit(&Edit::ChooseRest { source, rest: Some(rest) });
+                }
+            }
             Command::Browse(purpose) => self.browse(purpose, ctx),
             Command::CloseDialog => {
                 self.dialog = None;
@@ -185,6 +190,14 @@ impl Window {
         if let Err(error) = project.history.commit(edit) {
             self.tell(Message::error(format!("{}: {error}", edit.label())));
         }
+        self.follow_document();
+    }
+
+    /// Brings the open files in line with what the document says of them.
+    fn follow_document(&mut self) {
+        if let Some(project) = &mut self.bench.project {
+            project.follow_readings();
+        }
     }
 
     fn step_history(&mut self, forward: bool) {
@@ -195,6 +208,7 @@ impl Window {
             project.history.undo();
         }
         self.bench.preview = None;
+        self.follow_document();
     }
 
     fn go_to_step(&mut self, step: usize) {
@@ -202,6 +216,7 @@ impl Window {
         while project.history.steps().1 > step && project.history.undo() {}
         while project.history.steps().1 < step && project.history.redo() {}
         self.bench.preview = None;
+        self.follow_document();
     }
 
     fn switch_light(&mut self, ctx: &Context) {

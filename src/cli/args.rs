@@ -7,6 +7,7 @@ use clap::{Args, Parser, Subcommand, ValueEnum};
 use crate::clip::PathKind;
 use crate::exchange::OpenOptions;
 use crate::exchange::csv::{CsvOptions, NamedColumns, TimeUnit};
+use crate::skeleton::RestChoice;
 use crate::snag::SnagKind;
 
 use super::limits::LimitsName;
@@ -178,6 +179,9 @@ pub(super) struct ConvertArgs {
     /// Allow the input to be replaced
     #[arg(long)]
     pub(super) force: bool,
+    /// Pose that becomes the zero pose of a new BVH: the bind pose of the skins, the file's own nodes, or the first frame
+    #[arg(long, value_name = "bind|defaults|first-frame")]
+    pub(super) rest: Option<RestChoice>,
     #[command(flatten)]
     pub(super) csv: CsvArgs,
 }
@@ -223,7 +227,7 @@ impl CsvArgs {
     /// For opening files.
     pub(super) fn open_options(&self) -> OpenOptions {
         let csv = CsvOptions { columns: self.columns.clone(), time_unit: self.time_unit, hierarchy: None };
-        OpenOptions { csv }
+        OpenOptions { csv, rest: None }
     }
 }
 

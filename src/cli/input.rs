@@ -122,7 +122,7 @@ fn open_scene(
     let mut scene = ron::read(&address.path)?;
     let mut sources = Vec::new();
     for reference in &scene.document.sources {
-        let source = exchange::open(&reference.path, options)?;
+        let source = exchange::open(&reference.path, &options.or_as_remembered(&reference.reading))?;
         if source.sha256() != reference.sha256 {
             output.note(&reference.path, "has changed since the scene was saved; its passes may not fit");
         }

@@ -34,7 +34,7 @@ pub struct AngleRows {
     axes: Vec<Axis>,
     order: EulerOrder,
     degrees: Growing<[f64; 3]>,
-    keys: Growing<Rotor>,
+    keys: Vec<Rotor>,
     /// The last finite rotor as it was made, and the sign it took to be near the one before it.
     before: (Rotor, f64),
 }
@@ -46,7 +46,7 @@ impl AngleRows {
             axes,
             order,
             degrees: Growing::new([0.0; 3], capacity),
-            keys: Growing::new(Rotor::IDENTITY, capacity),
+            keys: Vec::with_capacity(capacity),
             before: (Rotor::IDENTITY, 1.0),
         }
     }
@@ -54,7 +54,7 @@ impl AngleRows {
     /// Makes room for `capacity` rows in all.
     pub fn reserve(&mut self, capacity: usize) {
         self.degrees.reserve(capacity);
-        self.keys.reserve(capacity);
+        self.keys.reserve_exact(capacity.saturating_sub(self.keys.len()));
     }
 
     /// Adds `count` rows: `row` gives the angles in degrees of each, in the order of the axes.
@@ -75,25 +75,28 @@ impl AngleRows {
             batch::euler_rotors(scratch.level, self.order, radians, rotors);
             let [s, yz, zx, xy] = scratch.rotors.parts().map(|stream| &stream[..length]);
             let (mut reference, mut sign) = self.before;
-            for (index, own) in self.keys.next(length).iter_mut().enumerate() {
+            self.keys.extend((0..length).map(|index| {
                 let rotor = Rotor::new(s[index], yz[index], zx[index], xy[index]);
                 // Rotors made of angles have no sign of their own: each takes the one near the last finite one before it.
                 let own_sign = if sign * rotor.dot(reference) < 0.0 { -1.0 } else { 1.0 };
-                *own = rotor.scale(own_sign);
                 if rotor.is_finite() {
                     (reference, sign) = (rotor, own_sign);
                 }
-            }
+                rotor.scale(own_sign)
+            }));
             self.before = (reference, sign);
         }
     }
 
     /// The track, with slerp between; `times` has as many keys as there are rows.
-    pub fn finish(self, times: Times) -> RotationTrack {
+    pub fn finish(mut self, times: Times) -> RotationTrack {
+        if self.keys.capacity() - self.keys.len() > self.keys.len() / 8 {
+            self.keys.shrink_to_fit();
+        }
         let degrees = self.degrees.finish();
         RotationTrack {
             times,
-            keys: self.keys.finish(),
+            keys: self.keys.into(),
             paths: Paths::Every(PathKind::Slerp),
             tangents: None,
             segments: Segments::default(),

@@ -57,6 +57,10 @@ pub fn resampled(clip: &Clip, rate: f64, from_secs: f64, to_secs: f64) -> Clip {
 /// between two of theirs.
 #[must_use]
 pub fn cut(clip: &Clip, from_secs: f64, to_secs: f64) -> Clip {
+    if clip.grid.times.is_empty() {
+        // Of nothing there is no part.
+        return clip.clone();
+    }
     let span = frames_within(&clip.grid.times, from_secs, to_secs);
     let (grid_times, shift) = match &clip.grid.times {
         Times::Even { step_secs, .. } => (
@@ -127,7 +131,13 @@ fn rotation_at(track: &RotationTrack, times: &Times, at: &[f64]) -> RotationTrac
             let near =
                 first.filter(|triple| triple.iter().all(|degrees| degrees.is_finite())).unwrap_or_default();
             let radians = continuous_angles(angles.order, &keys, near.map(f64::to_radians));
-            let degrees = radians.into_iter().map(|triple| triple.map(f64::to_degrees)).collect();
+            let degrees = at.iter().zip(radians).map(|(&secs, triple)| {
+                let found = triple.map(f64::to_degrees);
+                // At a key the file's own numbers, to the last bit, where these are they but for rounding.
+                let own = key_at(secs).map(|key| angles.degrees[key]);
+                own.filter(|own| (0..3).all(|i| (own[i] - found[i]).abs() < 1e-9)).unwrap_or(found)
+            });
+            let degrees = degrees.collect();
             Stored::Angles(FileAngles { degrees, ..angles.clone() })
         }
         Stored::PlaneAngles(_) => {

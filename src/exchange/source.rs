@@ -5,6 +5,8 @@ use std::path::{Path, PathBuf};
 use std::sync::{Arc, OnceLock};
 
 use crate::clip::Clip;
+use crate::scene::Reading;
+use crate::skeleton::{RestChoice, Skeleton};
 
 use super::{Note, bvh, csv, disk, gltf};
 
@@ -70,6 +72,34 @@ impl fmt::Display for Format {
 pub struct OpenOptions {
     /// Headers and time unit of a CSV file of another make.
     pub csv: csv::CsvOptions,
+    /// The pose that turns are measured from; by rule where nothing is said (see [`Source::rest`]).
+    pub rest: Option<RestChoice>,
+}
+
+impl OpenOptions {
+    /// What a scene remembers of them.
+    pub fn reading(&self) -> Reading {
+        Reading {
+            columns: self.csv.columns.as_ref().map(ToString::to_string),
+            time_unit: self.csv.time_unit.map(|unit| unit.name().to_owned()),
+            rest: self.rest,
+        }
+    }
+
+    /// Those that a scene remembers, and `self` where it remembers nothing. What can't be understood counts as nothing.
+    #[must_use]
+    pub fn or_as_remembered(&self, reading: &Reading) -> Self {
+        let columns = reading.columns.as_deref().and_then(|text| text.parse().ok());
+        let time_unit = reading.time_unit.as_deref().and_then(|text| text.parse().ok());
+        Self {
+            csv: csv::CsvOptions {
+                columns: self.csv.columns.clone().or(columns),
+                time_unit: self.csv.time_unit.or(time_unit),
+                hierarchy: self.csv.hierarchy.clone(),
+            },
+            rest: self.rest.or(reading.rest),
+        }
+    }
 }
 
 /// A clip file that could not be opened.
@@ -85,6 +115,16 @@ pub enum OpenError {
         path: PathBuf,
         /// Its extension.
         found: String,
+    },
+    /// A rest pose that the file does not have.
+    #[error("{path}: rest pose: expected {known}, found {choice}; choose one of those", path = path.display())]
+    Rest {
+        /// The file.
+        path: PathBuf,
+        /// Those that it has.
+        known: String,
+        /// What was asked for.
+        choice: RestChoice,
     },
     /// A BVH file that can't be read.
     #[error("{path}: {source}", path = path.display())]
@@ -123,6 +163,13 @@ pub struct Source {
     pub clips: Vec<Arc<Clip>>,
     /// What was odd.
     pub notes: Vec<Note>,
+    /// The rest poses that it has.
+    pub rests: Vec<RestChoice>,
+    /// The one that its clips' skeletons are measured from. By rule the bind pose where a skin has inverse bind matrices,
+    /// else the joints as the file has them.
+    pub rest: RestChoice,
+    /// What was said of how to read it.
+    pub reading: Reading,
     /// What is needed to give it back.
     pub(super) origin: Origin,
     /// Its hash, once somebody asked.
@@ -150,6 +197,43 @@ impl Source {
             Origin::Bvh(document) => document.bytes(),
             Origin::Csv(document) => document.bytes(),
         }
+    }
+
+    /// The rest pose that a source has where nobody chose one.
+    pub fn usual_rest(&self) -> RestChoice {
+        self.rests.first().copied().unwrap_or_default()
+    }
+
+    /// The same source, its clips' skeletons measured from another pose. `None` where it does not have that.
+    #[must_use]
+    pub fn with_rest(&self, choice: RestChoice) -> Option<Self> {
+        if !self.rests.contains(&choice) {
+            return None;
+        }
+        let bind = match &self.origin {
+            Origin::Gltf(document) => document.bind_pose(),
+            Origin::Bvh(_) | Origin::Csv(_) => None,
+        };
+        // Most clips of a file share one skeleton, and go on doing so.
+        let mut shared: Option<(Arc<Skeleton>, Arc<Skeleton>)> = None;
+        let clips = self.clips.iter().map(|clip| {
+            let old = &clip.skeleton;
+            let skeleton = match (choice, &shared) {
+                (RestChoice::FirstFrame, _) => Arc::new(old.with_rest(choice, clip.local_at(0.0))),
+                (_, Some((known, new))) if Arc::ptr_eq(known, old) => Arc::clone(new),
+                _ => {
+                    let pose = match (choice, bind) {
+                        (RestChoice::Bind, Some(bind)) => bind.clone(),
+                        _ => old.rest_pose(),
+                    };
+                    let new = Arc::new(old.with_rest(choice, pose));
+                    shared = Some((Arc::clone(old), Arc::clone(&new)));
+                    new
+                }
+            };
+            Arc::new(Clip { skeleton, ..(**clip).clone() })
+        });
+        Some(Self { clips: clips.collect(), rest: choice, ..self.clone() })
     }
 
     /// What a clip is called in lists: its name, or `#INDEX` where it has none.
@@ -210,8 +294,30 @@ pub fn open_bytes(path: &Path, bytes: Vec<u8>, options: &OpenOptions) -> Result<
             (Origin::Csv(Arc::new(document)), vec![clip], notes)
         }
     };
-    let clips = clips.into_iter().map(Arc::new).collect();
-    Ok(Source { path: at(), format, clips, notes, origin, sha256: OnceLock::new() })
+    let has_bind = matches!(&origin, Origin::Gltf(document) if document.bind_pose().is_some());
+    let mut rests = vec![RestChoice::Defaults, RestChoice::FirstFrame];
+    if has_bind {
+        rests.insert(0, RestChoice::Bind);
+    }
+    let source = Source {
+        path: at(),
+        format,
+        clips: clips.into_iter().map(Arc::new).collect(),
+        notes,
+        rests,
+        rest: RestChoice::Defaults,
+        reading: options.reading(),
+        origin,
+        sha256: OnceLock::new(),
+    };
+    let choice = options.rest.unwrap_or_else(|| source.usual_rest());
+    if choice == RestChoice::Defaults {
+        return Ok(source);
+    }
+    source.with_rest(choice).ok_or_else(|| {
+        let known: Vec<&str> = source.rests.iter().map(|rest| rest.name()).collect();
+        OpenError::Rest { path: at(), known: known.join(" or "), choice }
+    })
 }
 
 /// The skeleton of `NAME_rot.csv` from a `NAME_hierarchy.csv` beside it. One that can't be read is no companion.

@@ -5,6 +5,7 @@ use std::path::PathBuf;
 use std::sync::Arc;
 
 use crate::limit::Limits;
+use crate::skeleton::RestChoice;
 use crate::snag::{Snag, SnagKind};
 
 use super::pass::{ClipRef, MendPass, Need, Pass, PassId, SnagMark};
@@ -16,6 +17,19 @@ pub struct SourceRef {
     pub path: PathBuf,
     /// SHA-256 of its bytes in hexadecimal: tells when the file is no longer the same.
     pub sha256: String,
+    /// How it is read, where it does not say so itself.
+    pub reading: Reading,
+}
+
+/// What a person said about a file that does not say it itself.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct Reading {
+    /// Column names of a CSV file of another make, as they are typed on the command line.
+    pub columns: Option<String>,
+    /// The unit of its times: `s`, `ms` or `us`.
+    pub time_unit: Option<String>,
+    /// The pose that turns are measured from; by rule where nobody chose.
+    pub rest: Option<RestChoice>,
 }
 
 /// What is done to one clip of a source.

@@ -3,6 +3,7 @@
 use std::sync::Arc;
 
 use crate::limit::Limits;
+use crate::skeleton::RestChoice;
 use crate::snag::Snag;
 
 use super::document::{ClipWork, Document, SourceRef};
@@ -115,6 +116,13 @@ pub enum Edit {
         /// Where it is now.
         to: SourceRef,
     },
+    /// Measure turns from another rest pose.
+    ChooseRest {
+        /// Of which source.
+        source: usize,
+        /// Which; `None` for the one the rule gives.
+        rest: Option<RestChoice>,
+    },
 }
 
 /// An edit that does not fit the document.
@@ -191,6 +199,8 @@ impl Edit {
             Self::SetLimits { limits: Some(limits), .. } => format!("Set limits: {}", limits.title),
             Self::SetLimits { limits: None, .. } => "Set no limits".to_owned(),
             Self::Relocate { .. } => "Relocate source".to_owned(),
+            Self::ChooseRest { rest: Some(rest), .. } => format!("Rest pose: {}", rest.title()),
+            Self::ChooseRest { rest: None, .. } => "Rest pose by rule".to_owned(),
         }
     }
 
@@ -260,6 +270,11 @@ impl Edit {
                 passes.remove(place_of(passes, *pass)?);
             }
             Self::SetLimits { work, limits } => work_at(&mut next, *work)?.limits.clone_from(limits),
+            Self::ChooseRest { source, rest } => {
+                let count = next.sources.len();
+                let error = EditError::NoSuchSource { source_index: *source, count };
+                next.sources.get_mut(*source).ok_or(error)?.reading.rest = *rest;
+            }
             Self::Relocate { source, to } => {
                 let count = next.sources.len();
                 let error = EditError::NoSuchSource { source_index: *source, count };

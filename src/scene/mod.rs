@@ -7,7 +7,7 @@ mod history;
 mod library;
 pub mod pass;
 
-pub use document::{ClipWork, Document, SourceRef};
+pub use document::{ClipWork, Document, Reading, SourceRef};
 pub use edit::{Edit, EditError};
 pub use evaluate::{Evaluation, Evaluator, Stage};
 pub use history::{History, Revision, Step};

@@ -5,6 +5,7 @@ use std::collections::HashMap;
 use glam::DVec3;
 
 use super::Transform;
+use super::rest::ChosenRest;
 
 /// What a joint is there for.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -38,6 +39,8 @@ pub struct Skeleton {
     joints: Vec<Joint>,
     labels: Vec<String>,
     children: Vec<Vec<usize>>,
+    /// The pose that turns are measured from, where it is not the one the joints have.
+    pub(super) chosen: Option<ChosenRest>,
 }
 
 /// Why a list of joints is no skeleton.
@@ -87,7 +90,7 @@ impl Skeleton {
                 (name, _) => format!("{name}#{}", joint.number),
             })
             .collect();
-        Ok(Self { joints, labels, children })
+        Ok(Self { joints, labels, children, chosen: None })
     }
 
     /// All joints, carriers included, parents first.

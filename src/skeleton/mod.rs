@@ -5,6 +5,7 @@
 mod joints;
 mod mirror;
 mod pose;
+mod rest;
 pub mod roles;
 mod transform;
 mod two_joint_limb;
@@ -12,5 +13,6 @@ mod two_joint_limb;
 pub use joints::{Joint, JointKind, Skeleton, SkeletonError};
 pub use mirror::Mirror;
 pub use pose::{LocalPose, WorldJoint};
+pub use rest::{NoRestChoice, RestChoice};
 pub use transform::Transform;
 pub use two_joint_limb::{EASE_FROM, EndTurn, LimbBend, Reach, TwoJointLimb};

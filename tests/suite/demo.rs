@@ -234,7 +234,11 @@ fn scene_bytes(clip_name: &str, clip_bytes: &[u8]) -> Vec<u8> {
     let opened = exchange::open_bytes(&clip_path, clip_bytes.to_vec(), &OpenOptions::default());
     let source = opened.expect("a demo clip opens");
     let work = ClipWork::new(0, 0, source.clips[0].name.clone());
-    let sources = vec![SourceRef { path: clip_path, sha256: source.sha256().to_owned() }];
+    let sources = vec![SourceRef {
+        path: clip_path,
+        sha256: source.sha256().to_owned(),
+        reading: source.reading.clone(),
+    }];
     let scene_path = folder.path().join("scene.ron");
     let document = Document { sources, works: vec![work] };
     ron::write(&scene_path, &document, &|_, _, _| String::new()).expect("the scene can be written");

@@ -50,17 +50,17 @@ const SCENE: &str = "(turnwright_scene: 1, sources: [(path: \"walk.bvh\", sha256
     left: [(kind: \"wrap\", joint: \"Leg\", joint_index: 1, keys: (1, 2))])])\n";
 
 /// A sound file from which damaged ones are made.
-struct Seed {
+pub(crate) struct Seed {
     /// Its name; the extension gives the format.
-    name: &'static str,
-    bytes: Vec<u8>,
+    pub(crate) name: &'static str,
+    pub(crate) bytes: Vec<u8>,
     /// The document of a text glTF, whose values are swapped as values.
     json: Option<Value>,
     /// Damaged files that are made of it, out of 100.
     share: usize,
 }
 
-fn seeds() -> Vec<Seed> {
+pub(crate) fn seeds() -> Vec<Seed> {
     let text = |name, text: &str, share| Seed { name, bytes: text.as_bytes().to_vec(), json: None, share };
     let small = gltf_broken::small();
     let json = |name, document: Value, share| Seed {
@@ -158,7 +158,7 @@ fn damaged(seed: &Seed, others: &[Seed], dice: &mut Dice) -> Vec<u8> {
     bytes
 }
 
-fn damage(bytes: &mut Vec<u8>, others: &[Seed], dice: &mut Dice) {
+pub(crate) fn damage(bytes: &mut Vec<u8>, others: &[Seed], dice: &mut Dice) {
     if bytes.is_empty() {
         return;
     }
@@ -261,11 +261,11 @@ fn handle(seed: &Seed, bytes: &[u8], number: usize) -> bool {
         let csv = CsvOptions { hierarchy: Some(bones), ..CsvOptions::default() };
         let header_and_rows = CSV.split_inclusive('\n').skip(2).collect::<String>();
         let path = Path::new("nowhere/kinds.csv");
-        return open_bytes(path, header_and_rows.into_bytes(), &OpenOptions { csv }).is_ok();
+        return open_bytes(path, header_and_rows.into_bytes(), &OpenOptions { csv, rest: None }).is_ok();
     }
     let path = Path::new("nowhere").join(seed.name);
     let time_unit = [None, Some(TimeUnit::Microseconds)][number % 2];
-    let options = OpenOptions { csv: CsvOptions { time_unit, ..CsvOptions::default() } };
+    let options = OpenOptions { csv: CsvOptions { time_unit, ..CsvOptions::default() }, rest: None };
     let Ok(source) = open_bytes(&path, bytes.to_vec(), &options) else { return false };
     let same = encode(&source, &source.clips, None, &path).expect("what was read can be written");
     assert!(same.bytes == bytes, "a file that nobody touched is given back as it was");

@@ -10,6 +10,8 @@
 //! | `commands` | the real program: what it prints, how it ends, what it writes |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
 //! | `exchange` | files as a whole: every outside file opens, comes back, and goes into every other format |
+//! | `formats` | files as the world has them, made by a writer of its own: many clips and skins, every encoding, odd BVH |
+//! | `fuzz` | the fuzz targets without an engine, a second each or as long as asked |
 //! | `gltf_broken` | glTF and GLB files, damaged: every error with place, expected and found; random damage without a panic |
 //! | `gltf_forms` | glTF and GLB files, rare but right: encodings, node forms, channels of other things |
 //! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
@@ -29,6 +31,7 @@
 //! | `raster` | small pictures of one subject each |
 //! | `roles` | which joint plays which part: families of names, hard cases, the outside files |
 //! | `reduce` | key reduction on real clips: the bound checked by other means, the count against the fewest there could be |
+//! | `rest_pose` | which pose turns are measured from: the candidates, the rule, what follows from it |
 //! | `rotor_checks` | every case of the outside rotation checks (mpmath, scipy, numpy-quaternion), within its own tolerance |
 //! | `rotor_methods` | the worked examples of the methods page that concern rotors |
 //! | `rotor_practice` | facts of the trade about reflections, planes, signs and order |
@@ -44,6 +47,8 @@ mod contacts;
 mod csv;
 mod demo;
 mod exchange;
+mod formats;
+mod fuzz;
 mod gltf;
 mod gltf_broken;
 mod gltf_forms;
@@ -69,6 +74,7 @@ mod proof;
 mod raster;
 mod reduce;
 mod roles;
+mod rest_pose;
 mod rotor_checks;
 mod rotor_methods;
 mod rotor_practice;

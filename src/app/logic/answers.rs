@@ -337,7 +337,11 @@ impl Window {
             ));
             return;
         }
-        let to = SourceRef { path: source.path.clone(), sha256: source.sha256().to_owned() };
+        let to = SourceRef {
+            path: source.path.clone(),
+            sha256: source.sha256().to_owned(),
+            reading: source.reading.clone(),
+        };
         if let Some(state) = project.sources.get_mut(index) {
             *state = SourceState::Ready(source);
         }

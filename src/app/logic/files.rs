@@ -137,7 +137,7 @@ impl Window {
     pub(super) fn open_table(&mut self, path: PathBuf, columns: NamedColumns, unit: Option<TimeUnit>) {
         self.jobs.submit(Slot::Open, move |_| {
             let csv = CsvOptions { columns: Some(columns), time_unit: unit, ..CsvOptions::default() };
-            let result = exchange::open(&path, &OpenOptions { csv });
+            let result = exchange::open(&path, &OpenOptions { csv, rest: None });
             let result = result.map(hashed).map(|source| vec![source]).map_err(|error| error.to_string());
             Some(Answer::Opened { result, clip: None })
         });
@@ -220,8 +220,7 @@ impl Window {
             if !path.exists() {
                 disk::write(&path, own.clip_bytes).map_err(|error| error.to_string())?;
             }
-            moved
-                .push(Edit::Relocate { source: index, to: SourceRef { path, sha256: known.sha256.clone() } });
+            moved.push(Edit::Relocate { source: index, to: SourceRef { path, ..known.clone() } });
         }
         for edit in moved {
             self.edit(&edit);
@@ -292,8 +291,10 @@ impl Window {
     pub(super) fn relocate_to(&mut self, index: usize, path: PathBuf) {
         let Some(project) = &self.bench.project else { return };
         let serial = project.serial;
+        let known = project.document().sources.get(index).map(|source| source.reading.clone());
+        let options = OpenOptions::default().or_as_remembered(&known.unwrap_or_default());
         self.jobs.submit(Slot::Relocate, move |_| {
-            let result = exchange::open(&path, &OpenOptions::default());
+            let result = exchange::open(&path, &options);
             let result = result.map(hashed).map_err(|error| error.to_string());
             Some(Answer::Relocated { serial, index, result })
         });
@@ -337,7 +338,8 @@ fn open_scene(path: PathBuf) -> Result<OpenedScene, String> {
     let mut scene = ron::read(&path).map_err(|error| error.to_string())?;
     let mut sources = Vec::new();
     for known in &scene.document.sources {
-        sources.push(match exchange::open(&known.path, &OpenOptions::default()) {
+        let options = OpenOptions::default().or_as_remembered(&known.reading);
+        sources.push(match exchange::open(&known.path, &options) {
             Err(error) => SourceState::Missing(error.to_string()),
             Ok(source) if source.sha256() == known.sha256 => SourceState::Ready(Arc::new(source)),
             Ok(source) => SourceState::Changed(Arc::new(source)),

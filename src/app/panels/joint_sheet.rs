@@ -1,6 +1,6 @@
 //! The joint sheet: the tree of joints, and the numbers of the chosen one at the playhead.
 
-use egui::{Align2, FontId, Rect, Role, ScrollArea, Sense, Ui, UiBuilder, WidgetInfo, pos2, vec2};
+use egui::{Align2, ComboBox, FontId, Rect, Role, ScrollArea, Sense, Ui, UiBuilder, WidgetInfo, pos2, vec2};
 
 use super::super::commands::Command;
 use super::super::theme::INSET;
@@ -131,7 +131,7 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     });
 }
 
-fn sheet_panel(ui: &mut Ui, scope: &Scope<'_>, numbers: &JointNumbers) {
+fn sheet_panel(ui: &mut Ui, scope: &mut Scope<'_>, numbers: &JointNumbers) {
     let look = scope.look;
     let differs = numbers.before != numbers.after;
     ScrollArea::vertical().id_salt("joint numbers").auto_shrink(false).show(ui, |ui| {
@@ -166,6 +166,7 @@ fn sheet_panel(ui: &mut Ui, scope: &Scope<'_>, numbers: &JointNumbers) {
             }
             ui.add_space(5.0);
             small_heading(ui, scope, "Rest pose");
+            rest_choice(ui, scope);
             let rest = numbers.rest_deg.map(degrees).join("  ");
             line(ui, scope, "yz zx xy", &rest);
             let place = numbers.rest_place.map(|length| format!("{length:.3}")).join("  ");
@@ -176,6 +177,25 @@ fn sheet_panel(ui: &mut Ui, scope: &Scope<'_>, numbers: &JointNumbers) {
             }
         });
     });
+}
+
+/// Which pose the numbers are measured from.
+fn rest_choice(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let work = scope.bench.session.work;
+    let Some(source) = scope.bench.project.as_ref().and_then(|project| project.source_of(work)) else {
+        return;
+    };
+    let mut chosen = source.rest;
+    let combo = ComboBox::from_id_salt("rest pose").selected_text(chosen.title()).truncate();
+    let response = combo.show_ui(ui, |ui| {
+        for &rest in &source.rests {
+            ui.selectable_value(&mut chosen, rest, rest.title());
+        }
+    });
+    response.response.widget_info(|| WidgetInfo::labeled(Role::ComboBox, true, "Rest pose"));
+    if chosen != source.rest {
+        scope.out.push(Command::ChooseRest(chosen));
+    }
 }
 
 const NAME_WIDTH: f32 = 66.0;

@@ -159,7 +159,7 @@ fn rows(
         }
         CurveView::SwingTwist => {
             let axis = limb_direction(clip, joint);
-            let rest = clip.skeleton.joints()[joint].rest.rotation.reverse();
+            let rest = clip.skeleton.chosen_rest(joint).rotation.reverse();
             let (mut swing, mut twist) = (Vec::new(), Vec::new());
             let mut last_twist = 0.0;
             for &rotor in &rotors {

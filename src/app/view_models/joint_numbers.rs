@@ -33,9 +33,9 @@ pub struct JointNumbers {
     pub keys: usize,
     /// What lies between the keys.
     pub path: &'static str,
-    /// Turn of the rest pose in yz, zx and xy.
+    /// Turn of the chosen rest pose in yz, zx and xy.
     pub rest_deg: [f64; 3],
-    /// Place in the parent's frame when nothing is animated, in the file's lengths.
+    /// Place in the parent's frame in the chosen rest pose, in the file's lengths.
     pub rest_place: [f64; 3],
     /// In the source.
     pub before: RotationNumbers,
@@ -48,7 +48,7 @@ pub struct JointNumbers {
 /// The numbers of a joint at a time.
 pub fn joint_numbers(source: &Clip, result: &Clip, joint: usize, time_secs: f64) -> JointNumbers {
     let skeleton = &source.skeleton;
-    let rest = skeleton.joints()[joint].rest;
+    let rest = skeleton.chosen_rest(joint);
     let track = result.rotation(joint);
     JointNumbers {
         label: skeleton.label(joint).to_owned(),
@@ -74,7 +74,7 @@ fn path_word(paths: &Paths) -> &'static str {
 
 fn rotation_numbers(clip: &Clip, joint: usize, time_secs: f64) -> RotationNumbers {
     let rotor = rotation_at(clip, joint, time_secs);
-    let rest = clip.skeleton.joints()[joint].rest.rotation.reverse();
+    let rest = clip.skeleton.chosen_rest(joint).rotation.reverse();
     let split = SwingTwist::new(rest * rotor, limb_direction(clip, joint));
     let step = 1.0 / clip.grid.rate.max(1e-6);
     let before = rotation_at(clip, joint, (time_secs - step).max(0.0));

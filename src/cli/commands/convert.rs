@@ -8,7 +8,7 @@ use crate::cli::error::CliError;
 use crate::cli::input::{self, Input};
 use crate::cli::output::Output;
 use crate::clip::{self, Clip, ReduceOptions};
-use crate::exchange::{self, Format, Guard};
+use crate::exchange::{self, Format, Guard, OpenOptions};
 
 /// The most frames a clip is resampled to: an hour at 1000 a second.
 const MOST_FRAMES: f64 = 3.6e6;
@@ -22,7 +22,8 @@ pub(crate) fn run(args: &ConvertArgs, output: &mut Output) -> Result<u8, CliErro
     if let Some(degrees) = args.reduce {
         check_reduce(degrees, format)?;
     }
-    let input = input::open_one(&args.clip, &args.csv.open_options(), output)?;
+    let options = OpenOptions { rest: args.rest, ..args.csv.open_options() };
+    let input = input::open_one(&args.clip, &options, output)?;
     let guard = Guard { inputs: input.files(), force: args.force };
     guard.check(&args.output)?;
     let all = input.source.format.holds_many() && format.holds_many() && !input.is_named;

@@ -38,7 +38,7 @@ pub fn from_clip_to(clip: &Clip, out: &mut dyn Write) -> io::Result<Vec<Note>> {
     let (times, step_secs) = frame_times(&clip.grid, &mut notes);
     let listed: Vec<usize> = skeleton.listed().collect();
     let parents: Vec<Option<usize>> = (0..skeleton.len()).map(|joint| skeleton.parent_joint(joint)).collect();
-    let rest = skeleton.world(&skeleton.rest_pose());
+    let rest = skeleton.world(&skeleton.chosen_rest_pose());
     let size = listed
         .iter()
         .map(|&joint| rest[joint].position().distance(rest[listed[0]].position()))

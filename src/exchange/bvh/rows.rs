@@ -30,6 +30,8 @@ pub(super) struct Rows {
     pub(super) tile_len: usize,
     /// Rows that the joints have.
     done: usize,
+    /// Rows that they have room for.
+    capacity: usize,
     /// The largest angle in degrees, or one beyond what radians would be.
     pub(super) largest_deg: f64,
     scratch: AngleScratch,
@@ -50,7 +52,7 @@ enum Turn {
     },
     /// More than three.
     Many {
-        keys: Growing<Rotor>,
+        keys: Vec<Rotor>,
         turns: Turns,
         first: usize,
         before: Rotor,
@@ -80,6 +82,7 @@ impl Rows {
             tile: Vec::new(),
             tile_len: (rows - rows % BLOCK) * next,
             done: 0,
+            capacity: 0,
             largest_deg: 0.0,
             scratch: AngleScratch::default(),
         }
@@ -97,9 +100,16 @@ impl Rows {
             return;
         };
         let used = count * self.columns;
-        let capacity = expected.max(self.done + count);
+        let needed = self.done + count;
+        if needed > self.capacity {
+            // Room that grows by a few rows at a time would be copied over and over.
+            let more = if self.capacity == 0 { 0 } else { self.capacity + self.capacity / 4 };
+            self.capacity = expected.max(needed).max(more);
+            for joint in &mut self.joints {
+                joint.reserve(self.capacity);
+            }
+        }
         for joint in &mut self.joints {
-            joint.reserve(capacity);
             joint.push(&self.tile[..used], self.columns, &mut self.scratch);
         }
         if self.largest_deg < MOST_RADIANS {
@@ -138,10 +148,7 @@ impl JointRows {
                 let rows = AngleRows::new(turns.axes().collect(), order, 0);
                 Turn::Angles { rows, groups: [columns(0), columns(1), columns(2)] }
             }
-            Some(_) => {
-                let keys = Growing::new(Rotor::IDENTITY, 0);
-                Turn::Many { keys, turns, first, before: Rotor::IDENTITY }
-            }
+            Some(_) => Turn::Many { keys: Vec::new(), turns, first, before: Rotor::IDENTITY },
         };
         let mut columns = [None; 3];
         for (column, channel) in joint.channels.iter().enumerate() {
@@ -159,7 +166,7 @@ impl JointRows {
         match &mut self.turn {
             Turn::None => {}
             Turn::Angles { rows, .. } => rows.reserve(capacity),
-            Turn::Many { keys, .. } => keys.reserve(capacity),
+            Turn::Many { keys, .. } => keys.reserve_exact(capacity.saturating_sub(keys.len())),
         }
         if let Some(place) = &mut self.place {
             place.keys.reserve(capacity);
@@ -191,7 +198,7 @@ impl JointRows {
                 }
             },
             Turn::Many { keys, turns, first, before } => {
-                for (index, key) in keys.next(count).iter_mut().enumerate() {
+                for index in 0..count {
                     let own = &row(index)[*first..];
                     let sum = |columns: &Vec<usize>| columns.iter().map(|&column| own[column]).sum();
                     let degrees: Vec<f64> = turns.groups.iter().map(|(_, columns)| sum(columns)).collect();
@@ -199,7 +206,7 @@ impl JointRows {
                     if rotor.is_finite() {
                         *before = rotor;
                     }
-                    *key = rotor;
+                    keys.push(rotor);
                 }
             }
         }
@@ -231,7 +238,7 @@ impl JointRows {
         let rotation = match self.turn {
             Turn::None => None,
             Turn::Angles { rows, .. } => Some(rows.finish(times.clone())),
-            Turn::Many { keys, .. } => Some(RotationTrack::from_rotors(times.clone(), keys.finish())),
+            Turn::Many { keys, .. } => Some(RotationTrack::from_rotors(times.clone(), keys)),
         };
         let translation = self.place.map(|place| VectorTrack::straight(times.clone(), place.keys.finish()));
         JointTracks { rotation, translation, scale: None }

@@ -1,6 +1,7 @@
 //! What each column of a CSV clip is for.
 
 use std::collections::HashMap;
+use std::fmt;
 use std::str::FromStr;
 
 use crate::exchange::Note;
@@ -28,6 +29,14 @@ pub struct NamedColumns {
     pub time: String,
     /// x, y, z, w.
     pub xyzw: [String; 4],
+}
+
+/// As it is typed.
+impl fmt::Display for NamedColumns {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let [x, y, z, w] = &self.xyzw;
+        write!(f, "time={},w={w},x={x},y={y},z={z}", self.time)
+    }
 }
 
 /// Why a text names no columns.
@@ -66,6 +75,15 @@ pub enum TimeUnit {
 }
 
 impl TimeUnit {
+    /// As it is typed.
+    pub const fn name(self) -> &'static str {
+        match self {
+            Self::Seconds => "s",
+            Self::Milliseconds => "ms",
+            Self::Microseconds => "us",
+        }
+    }
+
     /// How many make a second. Dividing by it keeps more than multiplying by a thousandth, which no binary number is.
     pub const fn in_a_second(self) -> f64 {
         match self {

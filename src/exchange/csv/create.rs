@@ -102,7 +102,12 @@ fn bone_lines(clip: &Clip, index: usize, bytes: &mut Vec<u8>) {
     bytes.push(b'\n');
     for (tip, place) in joint.tips.iter().enumerate() {
         let own = name(index);
-        let _ = writeln!(bytes, "# tip {own}_tip{tip} parent {own} offset {}", numbers(&place.to_array()));
+        // A joint may bear that name.
+        let mut tip = format!("{own}_tip{tip}");
+        while skeleton.find(&tip).is_some() {
+            tip.push('_');
+        }
+        let _ = writeln!(bytes, "# tip {tip} parent {own} offset {}", numbers(&place.to_array()));
     }
 }
 

@@ -5,6 +5,7 @@ use std::sync::Arc;
 
 use serde_json::Value;
 
+use crate::skeleton::LocalPose;
 use crate::skeleton::Skeleton;
 
 use super::accessor::Component;
@@ -33,6 +34,8 @@ pub struct Document {
     pub(super) loaded: Vec<Option<Loaded>>,
     pub(super) skeleton: Arc<Skeleton>,
     pub(super) animations: Vec<Animation>,
+    /// Where a skin says it.
+    pub(super) bind_pose: Option<LocalPose>,
 }
 
 /// What ties a clip to its animation.
@@ -68,6 +71,11 @@ impl Document {
     /// The skeleton that all clips of the document share.
     pub fn skeleton(&self) -> &Arc<Skeleton> {
         &self.skeleton
+    }
+
+    /// The pose that its skins were bound in, each joint relative to its parent; `None` where no skin says it.
+    pub fn bind_pose(&self) -> Option<&LocalPose> {
+        self.bind_pose.as_ref()
     }
 
     /// How many animations it has.

@@ -12,6 +12,7 @@
 //! | time before the first key | the first value is held, from 0 on | the same |
 
 mod accessor;
+mod bind;
 mod buffers;
 mod channels;
 mod container;

@@ -11,6 +11,7 @@ use crate::clip::{Clip, FrameGrid, JointTracks};
 use crate::exchange::Note;
 
 use super::accessor::Accessors;
+use super::bind;
 use super::buffers::{Buffers, Fetch};
 use super::channels::{self, Channels, Part};
 use super::container::Container;
@@ -128,8 +129,12 @@ pub fn read<'b>(
         });
         bound.push(Animation { bindings });
     }
-    let loaded = tracks.into_accessors().buffers.into_loaded();
-    let document = Document { original: bytes, container, root: value, loaded, skeleton, animations: bound };
+    let mut accessors = tracks.into_accessors();
+    // Last, so that a file that asks for too much still gets its motion.
+    let bind_pose = bind::bind_pose(&root, &skeleton, &figure.joint_of_node, &mut accessors, &mut notes);
+    let loaded = accessors.buffers.into_loaded();
+    let document =
+        Document { original: bytes, container, root: value, loaded, skeleton, animations: bound, bind_pose };
     Ok((document, clips, notes))
 }
 

@@ -29,6 +29,21 @@ pub(super) struct Source {
     /// From the scene's own folder, with `/` between.
     pub(super) path: String,
     pub(super) sha256: String,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) columns: Option<String>,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) time_unit: Option<String>,
+    /// `bind`, `defaults` or `first-frame`.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) rest: Option<String>,
+}
+
+impl Source {
+    /// The oldest version that knows it.
+    pub(super) fn version(&self) -> u32 {
+        let is_plain = self.columns.is_none() && self.time_unit.is_none() && self.rest.is_none();
+        if is_plain { 1 } else { 2 }
+    }
 }
 
 #[derive(Serialize, Deserialize)]

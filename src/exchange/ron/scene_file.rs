@@ -4,9 +4,10 @@ use std::collections::{BTreeMap, BTreeSet};
 use std::path::{Component, Path, PathBuf};
 use std::sync::Arc;
 
-use crate::scene::{ClipWork, Document, Others, Pass, PassId, SnagMark, SourceRef};
-use crate::skeleton::Skeleton;
+use crate::scene::{ClipWork, Document, Others, Pass, PassId, Reading, SnagMark, SourceRef};
+use crate::skeleton::{RestChoice, Skeleton};
 
+use super::super::csv::{NamedColumns, TimeUnit};
 use super::super::disk;
 use super::error::SceneError;
 use super::limits::{limits_from, limits_to};
@@ -126,8 +127,14 @@ pub fn from_text(path: &Path, text: &str) -> Result<SceneFile, SceneError> {
     let scene: mirror::Saved = ron::from_str(text).map_err(syntax)?;
     let folder = path.parent().unwrap_or(Path::new(""));
     let mut file = SceneFile { document: Document::default(), labels: Vec::new() };
-    for source in scene.sources {
-        file.document.sources.push(SourceRef { path: folder.join(source.path), sha256: source.sha256 });
+    for (index, source) in scene.sources.into_iter().enumerate() {
+        let reading = reading_from(&source).map_err(|what| SceneError::Meaning {
+            path: path.to_owned(),
+            place: format!("sources[{index}]"),
+            what,
+        })?;
+        let source = SourceRef { path: folder.join(source.path), sha256: source.sha256, reading };
+        file.document.sources.push(source);
     }
     for (index, clip) in scene.clips.into_iter().enumerate() {
         let meaning = |what: String| SceneError::Meaning {
@@ -188,10 +195,14 @@ pub fn to_text(
     label: &dyn Fn(usize, usize, usize) -> String,
 ) -> Result<String, SceneError> {
     let folder = path.parent().unwrap_or(Path::new(""));
-    let sources = document
-        .sources
-        .iter()
-        .map(|source| mirror::Source { path: relative(folder, &source.path), sha256: source.sha256.clone() });
+    let sources = document.sources.iter().map(|source| mirror::Source {
+        path: relative(folder, &source.path),
+        sha256: source.sha256.clone(),
+        columns: source.reading.columns.clone(),
+        time_unit: source.reading.time_unit.clone(),
+        rest: source.reading.rest.map(|rest| rest.name().to_owned()),
+    });
+    let sources: Vec<mirror::Source> = sources.collect();
     let clips = document.works.iter().enumerate().map(|(index, work)| mirror::ClipWork {
         source: work.source,
         clip: work.clip,
@@ -230,12 +241,31 @@ pub fn to_text(
     let clips: Vec<mirror::ClipWork> = clips.collect();
     let versions = clips.iter().flat_map(|clip| &clip.passes).map(|pass| pass.step.version());
     let has_limits = clips.iter().any(|clip| clip.limits.is_some());
+    let versions = versions.chain(sources.iter().map(mirror::Source::version));
     let turnwright_scene = versions.max().unwrap_or(1).max(if has_limits { 2 } else { 1 });
-    let scene = mirror::Saved { turnwright_scene, sources: sources.collect(), clips };
+    let scene = mirror::Saved { turnwright_scene, sources, clips };
     let pretty = ron::ser::PrettyConfig::new().depth_limit(7).struct_names(false).new_line("\n");
     let text = ron::ser::to_string_pretty(&scene, pretty)
         .map_err(|error| SceneError::Encode { path: path.to_owned(), what: error.to_string() })?;
     Ok(text + "\n")
+}
+
+/// How a source is read, each part checked.
+fn reading_from(source: &mirror::Source) -> Result<Reading, String> {
+    let checked = |name: &str, text: &Option<String>, check: &dyn Fn(&str) -> Result<(), String>| {
+        let wrong = |error: String| format!("{name}: {error}");
+        text.as_deref().map_or(Ok(()), check).map_err(wrong)?;
+        Ok::<_, String>(text.clone())
+    };
+    let columns = checked("columns", &source.columns, &|text| {
+        text.parse::<NamedColumns>().map(drop).map_err(|error| error.to_string())
+    })?;
+    let time_unit = checked("time_unit", &source.time_unit, &|text| {
+        text.parse::<TimeUnit>().map(drop).map_err(|error| error.to_string())
+    })?;
+    let rest = source.rest.as_deref().map(str::parse::<RestChoice>).transpose();
+    let rest = rest.map_err(|error| format!("rest: {error}"))?;
+    Ok(Reading { columns, time_unit, rest })
 }
 
 /// `path` as seen from `folder`, with `/` between, so that a scene can move with its sources.
@@ -313,7 +343,11 @@ mod tests {
             .into(),
         });
         work.left.push(SnagMark::of(&snag(SnagKind::Spike, 1, Remedy::Redraw)));
-        let source = SourceRef { path: folder.join("takes/walk.bvh"), sha256: "00".repeat(32) };
+        let source = SourceRef {
+            path: folder.join("takes/walk.bvh"),
+            sha256: "00".repeat(32),
+            reading: Reading::default(),
+        };
         Document { sources: vec![source], works: vec![work] }
     }
 
@@ -337,6 +371,30 @@ mod tests {
         assert_eq!(back.document, document);
         let text = std::str::from_utf8(&disk::read(&path).unwrap()).unwrap().to_owned();
         assert!(text.contains("path: \"../takes/walk.bvh\""), "{text}");
+    }
+
+    #[test]
+    fn how_a_source_is_read_is_remembered() {
+        let folder = PathBuf::from("/somewhere");
+        let mut document = document(&folder);
+        document.sources[0].reading = Reading {
+            columns: Some("time=t,w=a,x=b,y=c,z=d".to_owned()),
+            time_unit: Some("ms".to_owned()),
+            rest: Some(RestChoice::FirstFrame),
+        };
+        let path = folder.join("a.ron");
+        let text = to_text(&path, &document, &label).unwrap();
+        assert!(text.contains("turnwright_scene: 2,"), "an older program would not know what to do with it");
+        let back = from_text(&path, &text).unwrap();
+        assert_eq!(back.document.sources[0].reading, document.sources[0].reading);
+        for (right, wrong, message) in [
+            ("time=t,w=a,x=b,y=c,z=d", "t", "sources[0]: columns: expected columns as time=NAME,w=NAME"),
+            ("\"ms\"", "\"h\"", "sources[0]: time_unit: expected s, ms or us, found `h`"),
+            ("first-frame", "last", "sources[0]: rest: expected bind, defaults or first-frame, found `last`"),
+        ] {
+            let error = from_text(&path, &text.replace(right, wrong)).unwrap_err().to_string();
+            assert!(error.contains(message), "{error}");
+        }
     }
 
     #[test]
