@@ -113,8 +113,8 @@ impl Project {
         let document = Arc::clone(self.document());
         for (state, known) in self.sources.iter_mut().zip(&document.sources) {
             let (SourceState::Ready(source) | SourceState::Changed(source)) = state else { continue };
-            let wanted = known.reading.rest.unwrap_or_else(|| source.usual_rest());
-            if source.rest != wanted
+            let wanted = known.reading.rest;
+            if source.reading.rest != wanted
                 && let Some(other) = source.with_rest(wanted)
             {
                 *source = Arc::new(other);

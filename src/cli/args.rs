@@ -179,7 +179,8 @@ pub(super) struct ConvertArgs {
     /// Allow the input to be replaced
     #[arg(long)]
     pub(super) force: bool,
-    /// Pose that becomes the zero pose of a new BVH: the bind pose of the skins, the file's own nodes, or the first frame
+    /// Pose that becomes the zero pose of a new BVH: the bind pose of the skins, the joints as the file has them (as without
+    /// this option), or the first frame
     #[arg(long, value_name = "bind|defaults|first-frame")]
     pub(super) rest: Option<RestChoice>,
     #[command(flatten)]

@@ -204,9 +204,11 @@ impl Source {
         self.rests.first().copied().unwrap_or_default()
     }
 
-    /// The same source, its clips' skeletons measured from another pose. `None` where it does not have that.
+    /// The same source, its clips' skeletons measured from another pose, or from the usual one by rule. `None` where it does
+    /// not have that.
     #[must_use]
-    pub fn with_rest(&self, choice: RestChoice) -> Option<Self> {
+    pub fn with_rest(&self, asked: Option<RestChoice>) -> Option<Self> {
+        let choice = asked.unwrap_or_else(|| self.usual_rest());
         if !self.rests.contains(&choice) {
             return None;
         }
@@ -226,14 +228,18 @@ impl Source {
                         (RestChoice::Bind, Some(bind)) => bind.clone(),
                         _ => old.rest_pose(),
                     };
-                    let new = Arc::new(old.with_rest(choice, pose));
+                    let new = Arc::new(match asked {
+                        Some(choice) => old.with_rest(choice, pose),
+                        None => old.with_rest_by_rule(choice, pose),
+                    });
                     shared = Some((Arc::clone(old), Arc::clone(&new)));
                     new
                 }
             };
             Arc::new(Clip { skeleton, ..(**clip).clone() })
         });
-        Some(Self { clips: clips.collect(), rest: choice, ..self.clone() })
+        let reading = Reading { rest: asked, ..self.reading.clone() };
+        Some(Self { clips: clips.collect(), rest: choice, reading, ..self.clone() })
     }
 
     /// What a clip is called in lists: its name, or `#INDEX` where it has none.
@@ -314,7 +320,7 @@ pub fn open_bytes(path: &Path, bytes: Vec<u8>, options: &OpenOptions) -> Result<
     if choice == RestChoice::Defaults {
         return Ok(source);
     }
-    source.with_rest(choice).ok_or_else(|| {
+    source.with_rest(options.rest).ok_or_else(|| {
         let known: Vec<&str> = source.rests.iter().map(|rest| rest.name()).collect();
         OpenError::Rest { path: at(), known: known.join(" or "), choice }
     })

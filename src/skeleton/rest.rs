@@ -6,7 +6,7 @@ use std::sync::Arc;
 
 use super::{LocalPose, Skeleton, Transform};
 
-/// A pose that turns are measured from, and that a file of a format with a fixed rest pose begins from. It does not say
+/// A pose that turns are measured from. It does not say
 /// where a joint stands that nothing moves: that is always [`Joint::rest`](super::Joint::rest).
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Hash)]
 pub enum RestChoice {
@@ -68,21 +68,46 @@ impl FromStr for RestChoice {
 #[derive(Clone, Debug, PartialEq)]
 pub(super) struct ChosenRest {
     choice: RestChoice,
+    /// Whether somebody asked for it; else a rule did.
+    is_asked: bool,
     pose: Arc<[Transform]>,
 }
 
 impl Skeleton {
-    /// The same joints, measured from `pose`.
+    /// The same joints, measured from `pose`, as somebody asked.
     ///
     /// # Panics
     /// When `pose` has not one transform for each joint.
     #[must_use]
     pub fn with_rest(&self, choice: RestChoice, pose: LocalPose) -> Self {
+        self.measured(choice, pose, true)
+    }
+
+    /// The same joints, measured from `pose`, which a rule gives.
+    ///
+    /// # Panics
+    /// When `pose` has not one transform for each joint.
+    #[must_use]
+    pub fn with_rest_by_rule(&self, choice: RestChoice, pose: LocalPose) -> Self {
+        self.measured(choice, pose, false)
+    }
+
+    fn measured(&self, choice: RestChoice, pose: LocalPose, is_asked: bool) -> Self {
         assert_eq!(pose.len(), self.len(), "a pose has one transform for each joint");
-        let chosen = (choice != RestChoice::Defaults).then(|| ChosenRest { choice, pose: pose.into() });
+        let chosen =
+            (choice != RestChoice::Defaults).then(|| ChosenRest { choice, is_asked, pose: pose.into() });
         let mut skeleton = self.clone();
         skeleton.chosen = chosen;
         skeleton
+    }
+
+    /// The pose that becomes the zero pose of a format that has such: the one that was asked for, else the joints as the file
+    /// has them, so that a clip and its translation agree about what rest is.
+    pub fn zero_pose(&self) -> LocalPose {
+        match &self.chosen {
+            Some(chosen) if chosen.is_asked => chosen.pose.to_vec(),
+            _ => self.rest_pose(),
+        }
     }
 
     /// Which pose the joints are measured from.

@@ -88,7 +88,7 @@ fn round_trip(name: &str, bytes: &[u8]) -> bool {
         }
     }
     for rest in RestChoice::ALL {
-        let measured = source.with_rest(rest);
+        let measured = source.with_rest(Some(rest));
         assert_eq!(measured.is_some(), source.rests.contains(&rest));
     }
     // A part of it, under the same head.

@@ -16,7 +16,8 @@ pub(super) const PORTION: usize = 1 << 18;
 
 /// Writes any clip as BVH: one row for each frame of its grid, channels Z X Y.
 ///
-/// Joints stand parallel to the world at rest, so turns are written away from the rest pose in world axes and offsets are
+/// Joints stand parallel to the world at rest, so turns are written away from the rest pose (the one that was asked for, else
+/// the joints as the file has them) in world axes and offsets are
 /// the rest limbs in world axes; carriers are taken into the joints below them. Roots have positions, and so has each
 /// joint whose distance to its parent is not the rest limb's all the time: every joint is where it was at every frame.
 /// Angles run on from frame to frame without whole turns or mirrored triples where there is a way round. Sizes are lost;
@@ -38,7 +39,7 @@ pub fn from_clip_to(clip: &Clip, out: &mut dyn Write) -> io::Result<Vec<Note>> {
     let (times, step_secs) = frame_times(&clip.grid, &mut notes);
     let listed: Vec<usize> = skeleton.listed().collect();
     let parents: Vec<Option<usize>> = (0..skeleton.len()).map(|joint| skeleton.parent_joint(joint)).collect();
-    let rest = skeleton.world(&skeleton.chosen_rest_pose());
+    let rest = skeleton.world(&skeleton.zero_pose());
     let size = listed
         .iter()
         .map(|&joint| rest[joint].position().distance(rest[listed[0]].position()))
