@@ -97,8 +97,7 @@ fn round_trip(name: &str, bytes: &[u8]) -> bool {
         .iter()
         .map(|clip| Arc::new(turnwright::clip::cut(clip, clip.duration_secs * 0.3, clip.duration_secs * 0.7)))
         .collect();
-    if let Ok(written) = encode(&source, &parts, None, &path)
-    {
+    if let Ok(written) = encode(&source, &parts, None, &path) {
         let again = open_bytes(&path, written.bytes, &options);
         assert!(again.is_ok(), "a part of it can be read: {again:?}");
     }

@@ -436,7 +436,11 @@ fn a_scene_keeps_a_blend() {
         BlendForm::Add { weight: -1.5, reference: Reference::Mean, side: Side::Parent },
     ];
     let mut document = Document::default();
-    document.sources.push(SourceRef { path: "/a/walk.bvh".into(), sha256: "0".repeat(64) });
+    document.sources.push(SourceRef {
+        path: "/a/walk.bvh".into(),
+        sha256: "0".repeat(64),
+        reading: turnwright::scene::Reading::default(),
+    });
     document.works.push(ClipWork::new(0, 0, "walk"));
     for (id, form) in forms.into_iter().enumerate() {
         let other = ClipRef { source: 0, clip: id };

@@ -160,7 +160,7 @@ fn read_rows(
                     continue;
                 }
                 let frames = rows.len().checked_div(columns).unwrap_or(announced);
-                let is_between_frames = columns == 0 || rows.len() % columns == 0;
+                let is_between_frames = columns == 0 || rows.len().is_multiple_of(columns);
                 if is_between_frames && frames >= announced && frames > 0 {
                     let text = format!(
                         "expected the end of the file after {frames} frames, found {}: left as it is",

@@ -42,28 +42,28 @@ pub(super) fn bind_pose(
     note_differences(skeleton, &skins, notes);
     let mut pose = skeleton.rest_pose();
     let mut world: Vec<DAffine3> = Vec::with_capacity(pose.len());
-    for joint in 0..skeleton.len() {
+    for (joint, own) in pose.iter_mut().enumerate() {
         let owner = skins.iter().find(|skin| skin.places.contains_key(&joint));
         let bound = owner.and_then(|skin| {
-            let own = skin.places.get(&joint)?;
+            let place = skin.places.get(&joint)?;
             let parent = match bound_parent(skeleton, skin, joint) {
                 Some((parent, between)) => parent * between,
                 None => skeleton.joints()[joint].parent.map_or(DAffine3::IDENTITY, |parent| world[parent]),
             };
-            let local = Transform::from_affine(&(parent.inverse() * *own));
+            let local = Transform::from_affine(&(parent.inverse() * *place));
             let is_sound = local.translation.is_finite() && local.rotation.is_finite();
             (is_sound && local.scale.is_finite() && local.scale.abs().min_element() > 1e-9).then_some(local)
         });
         if let Some(mut bound) = bound {
             // What is left of a size after two matrices of 32 bits is no size.
-            let rest = pose[joint].scale;
+            let rest = own.scale;
             if (bound.scale - rest).abs().max_element() <= 1e-4 * rest.abs().max_element() {
                 bound.scale = rest;
             }
-            pose[joint] = bound;
+            *own = bound;
         }
         let parent = skeleton.joints()[joint].parent.map_or(DAffine3::IDENTITY, |parent| world[parent]);
-        world.push(parent * pose[joint].to_affine());
+        world.push(parent * own.to_affine());
     }
     Some(pose)
 }
