@@ -559,7 +559,11 @@ fn scenes_and_files_give_limits_back() {
     let options = SurveyOptions { limits: Some(limits.clone()), ..SurveyOptions::default() };
     let survey = mend::survey(&clip, &options, &Unwatched).unwrap();
     let mut document = Document::default();
-    document.sources.push(SourceRef { path: "walk.bvh".into(), sha256: "00".repeat(32) });
+    document.sources.push(SourceRef {
+        path: "walk.bvh".into(),
+        sha256: "00".repeat(32),
+        reading: turnwright::scene::Reading::default(),
+    });
     document.works.push(ClipWork::new(0, 0, "walk"));
     let edits = [
         Edit::SetLimits { work: 0, limits: Some(limits.clone()) },
