@@ -241,18 +241,21 @@ pub(super) enum PathName {
     Squad,
     /// Smooth through the keys, without a jump in rate or acceleration
     Spline,
+    /// Smoothing: near the keys, without a jump in rate or acceleration
+    BSpline,
     /// Each key held until the next
     Hold,
 }
 
 impl PathName {
-    /// The track's own path kind; `None` for the spline, which runs through all keys at once.
-    pub(super) const fn kind(self) -> Option<PathKind> {
+    /// The track's own path kind.
+    pub(super) const fn kind(self) -> PathKind {
         match self {
-            Self::Slerp => Some(PathKind::Slerp),
-            Self::Squad => Some(PathKind::Squad),
-            Self::Hold => Some(PathKind::Hold),
-            Self::Spline => None,
+            Self::Slerp => PathKind::Slerp,
+            Self::Squad => PathKind::Squad,
+            Self::Spline => PathKind::Spline,
+            Self::BSpline => PathKind::BSpline,
+            Self::Hold => PathKind::Hold,
         }
     }
 }

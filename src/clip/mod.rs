@@ -16,6 +16,7 @@ mod path;
 mod reduce;
 mod resample;
 mod rotation_track;
+mod short_steps;
 mod smooth;
 mod take;
 mod times;
@@ -34,10 +35,13 @@ pub use displace::{Push, PushFrame, pushed};
 pub use feet::standing_feet;
 pub use key_edit::{KeyChange, KeyEdit, NewKey, with_key_edits};
 pub use keys::Keys;
-pub use path::{MeantTurn, Pace, PathError, PathKind, Paths, Peak, Segment, Segments, Spacing, SpacingError};
+pub use path::{
+    Handles, MeantTurn, Pace, PathError, PathKind, Paths, Peak, Segment, Segments, Spacing, SpacingError,
+};
 pub use reduce::{KeyCount, ReduceOptions, reduced, reduced_together};
 pub use resample::{cut, resampled};
 pub use rotation_track::{FileAngles, RotationTrack, Stored};
+pub use short_steps::{ShortSteps, with_short_steps};
 pub use smooth::{Kernel, Smoothing, partly};
 pub use take::{Clip, FrameGrid, JointTracks};
 pub use times::{Place, Times};

@@ -32,20 +32,30 @@ pub fn resampled(clip: &Clip, rate: f64, from_secs: f64, to_secs: f64) -> Clip {
     let count = ((to_secs - from_secs).max(0.0) * rate + SLACK).floor() as usize + 1;
     let times = Times::Even { step_secs: 1.0 / rate, count };
     let at: Vec<f64> = (0..count).map(|frame| from_secs + frame as f64 / rate).collect();
+    made_at(clip, times, &at, rate)
+}
+
+/// The clip with a key at each of `times`, counted in them.
+pub(super) fn resampled_at(clip: &Clip, times: Times, rate: f64) -> Clip {
+    let at: Vec<f64> = times.iter().collect();
+    made_at(clip, times, &at, rate)
+}
+
+fn made_at(clip: &Clip, times: Times, at: &[f64], rate: f64) -> Clip {
     let joints = clip.joints.iter().map(|tracks| {
         Arc::new(JointTracks {
             rotation: tracks
                 .rotation
                 .as_ref()
                 .filter(|track| !track.keys.is_empty())
-                .map(|track| rotation_at(track, &times, &at)),
-            translation: tracks.translation.as_ref().and_then(|track| vectors_at(track, &times, &at)),
-            scale: tracks.scale.as_ref().and_then(|track| vectors_at(track, &times, &at)),
+                .map(|track| rotation_at(track, &times, at)),
+            translation: tracks.translation.as_ref().and_then(|track| vectors_at(track, &times, at)),
+            scale: tracks.scale.as_ref().and_then(|track| vectors_at(track, &times, at)),
         })
     });
     Clip {
         joints: joints.collect(),
-        duration_secs: times.at(count - 1),
+        duration_secs: times.span().map_or(0.0, |(_, last)| last),
         grid: FrameGrid { times, rate },
         ..clip.clone()
     }

@@ -1,9 +1,10 @@
 //! Writing results: back into their own file with nothing else touched, or into another format.
 
+use std::borrow::Cow;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use crate::clip::Clip;
+use crate::clip::{self, Clip};
 
 use super::source::{Format, OpenError, Origin, Source};
 use super::{Note, bvh, csv, disk, gltf};
@@ -127,13 +128,14 @@ pub fn write(
     guard.check(target)?;
     if Format::of(target)? == Format::Bvh {
         // The text of a long clip is large, and goes out piece by piece.
-        let clip = one_of(source, results, choice)?;
-        let notes = disk::write_with(target, |out| match &source.origin {
-            Origin::Bvh(document) if has_same_joints(source, clip) => {
-                bvh::write_to(document, &source.clips[0], clip, out)
+        let rows = Rows::of(one_of(source, results, choice)?, Format::Bvh);
+        let mut notes = disk::write_with(target, |out| match &source.origin {
+            Origin::Bvh(document) if has_same_joints(source, &rows.clip) => {
+                bvh::write_to(document, &source.clips[0], &rows.clip, out)
             }
-            _ => bvh::from_clip_to(clip, out),
+            _ => bvh::from_clip_to(&rows.clip, out),
         })?;
+        notes.extend(rows.note);
         return Ok(Written { path: target.to_owned(), beside: None, notes });
     }
     let mut encoded = encode(source, results, choice, target)?;
@@ -178,10 +180,14 @@ pub fn encode(
             Ok(Encoded::from(output))
         }
         (Origin::Bvh(document), Format::Bvh) if has_same_joints(source, &results[0]) => {
-            Ok(Encoded::alone(bvh::write(document, &source.clips[0], &results[0])))
+            let rows = Rows::of(&results[0], format);
+            let encoded = Encoded::alone(bvh::write(document, &source.clips[0], &rows.clip));
+            Ok(rows.tell(encoded))
         }
         (Origin::Csv(document), Format::Csv) if has_same_joints(source, &results[0]) => {
-            Ok(Encoded::alone(csv::write(document, &source.clips[0], &results[0])))
+            let rows = Rows::of(&results[0], format);
+            let encoded = Encoded::alone(csv::write(document, &source.clips[0], &rows.clip));
+            Ok(rows.tell(encoded))
         }
         _ => new_file(one_of(source, results, choice)?, format, &stem, target),
     }
@@ -203,6 +209,35 @@ fn one_of<'r>(
 ) -> Result<&'r Arc<Clip>, WriteError> {
     check_count(source, results)?;
     results.get(choice.unwrap_or(0)).ok_or_else(|| WriteError::NoClip { path: source.path.clone() })
+}
+
+/// A clip for a format of rows, in which from row to row the short way is meant.
+struct Rows<'a> {
+    clip: Cow<'a, Clip>,
+    note: Option<Note>,
+}
+
+impl<'a> Rows<'a> {
+    /// With rows put between where a meant turn needs them: in CSV there alone, in BVH at a multiple of the rate.
+    fn of(clip: &'a Clip, format: Format) -> Self {
+        let Some(steps) = clip::with_short_steps(clip, format == Format::Bvh) else {
+            return Self { clip: Cow::Borrowed(clip), note: None };
+        };
+        let (joint, step_rad) = steps.longest;
+        let text = format!(
+            "expected at most 120 degrees from row to row, found a meant turn of {:.0}: written as {} rows in place of {}",
+            step_rad.to_degrees(),
+            steps.frames[1],
+            steps.frames[0]
+        );
+        let note = Note::new(format!("joint {}", clip.skeleton.label(joint)), text);
+        Self { clip: Cow::Owned(steps.clip), note: Some(note) }
+    }
+
+    fn tell(self, mut encoded: Encoded) -> Encoded {
+        encoded.notes.extend(self.note);
+        encoded
+    }
 }
 
 /// Copies what the result still refers to into the target's folder, where it is another one and does not have it yet:
@@ -228,8 +263,12 @@ fn form(format: Format) -> gltf::Form {
 /// A new file of one clip.
 fn new_file(clip: &Clip, format: Format, stem: &str, target: &Path) -> Result<Encoded, WriteError> {
     match format {
-        Format::Bvh => Ok(Encoded::alone(bvh::from_clip(clip))),
-        Format::Csv => Ok(Encoded::alone(csv::from_clip(clip))),
+        Format::Bvh | Format::Csv => {
+            let rows = Rows::of(clip, format);
+            let made =
+                if format == Format::Bvh { bvh::from_clip(&rows.clip) } else { csv::from_clip(&rows.clip) };
+            Ok(rows.tell(Encoded::alone(made)))
+        }
         Format::Gltf | Format::Glb => {
             let failed = |source| WriteError::Gltf { path: target.to_owned(), source };
             let glb = gltf::from_clip(clip, stem).map_err(failed)?;

@@ -20,6 +20,7 @@
 //! | `hostile` | a hundred thousand damaged files of every format: no panic, no hang, no memory beyond the bound |
 //! | `layers` | layers point down only, and the window's libraries stay in `app` |
 //! | `limits` | joint limits: clamps against outside values, what holds for every limit, limits learned; the preset on the real clips |
+//! | `path_export` | paths, spacings and meant turns in files, played as each format says |
 //! | `paths` | paths between keys, spacing, meant turns: 50-digit derivatives, scipy, and what holds for every track |
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
 //! | `gui_display` | the real program in a real window under Xvfb, driven by mouse and keyboard |
@@ -68,6 +69,7 @@ mod gui_window;
 mod hostile;
 mod layers;
 mod limits;
+mod path_export;
 mod paths;
 mod planter;
 mod proof;

@@ -1,6 +1,7 @@
 //! `sample`: where every joint stands and turns at some times.
 
 use std::io;
+use std::path::Path;
 
 use serde_json::json;
 
@@ -9,8 +10,7 @@ use crate::cli::args::{PathName, SampleArgs, SampleFormat};
 use crate::cli::error::CliError;
 use crate::cli::input;
 use crate::cli::output::Output;
-use crate::clip::{Clip, RotationTrack};
-use crate::rotor::{EndRates, RotationSpline, Rotor, SplineError};
+use crate::clip::{Clip, PathKind};
 use crate::skeleton::LocalPose;
 
 /// The most poses that are printed: joints times times.
@@ -25,19 +25,10 @@ pub(crate) fn run(args: &SampleArgs, output: &mut Output) -> Result<u8, CliError
     let clip = input.clip();
     let joints: Vec<usize> = clip.skeleton.listed().collect();
     let times = times(args, clip, joints.len())?;
-    let splines = match args.path {
-        Some(PathName::Spline) => Some(splines(clip).map_err(|(joint, source)| CliError::Argument {
-            place: format!("{}: joint {}: --path spline", args.clip, clip.skeleton.label(joint)),
-            expected: "keys that a smooth curve can run through".to_owned(),
-            found: source.to_string(),
-            advice: "mend the clip first, or use --path squad",
-        })?),
-        _ => None,
-    };
-    let poses: Vec<Vec<Place>> = times
-        .chunks(TIMES_AT_ONCE)
-        .flat_map(|times| poses(clip, args, splines.as_deref(), &joints, times))
-        .collect();
+    let path = args.path.map(PathName::kind);
+    tell_faults(args, clip, path, output);
+    let poses: Vec<Vec<Place>> =
+        times.chunks(TIMES_AT_ONCE).flat_map(|times| poses(clip, args.world, path, &joints, times)).collect();
     match args.format {
         SampleFormat::Json => print_json(clip, &joints, &times, &poses, output)?,
         SampleFormat::Csv => print_csv(clip, &joints, &times, &poses, output)?,
@@ -76,30 +67,30 @@ fn times(args: &SampleArgs, clip: &Clip, joints: usize) -> Result<Vec<f64>, CliE
     Ok((0..=last as usize).map(|frame| frame as f64 / rate).collect())
 }
 
-/// A spline through the keys of each joint that has at least two.
-fn splines(clip: &Clip) -> Result<Vec<Option<RotationSpline>>, (usize, SplineError)> {
-    let of = |track: &RotationTrack| {
-        let times: Vec<f64> = track.times.iter().collect();
-        let keys: Vec<Rotor> = (0..track.keys.len()).map(|key| track.sound_key(key)).collect();
-        RotationSpline::new(&times, &keys, EndRates::Secant)
-    };
-    (0..clip.joints.len())
-        .map(|joint| match clip.rotation(joint).filter(|track| track.keys.len() > 1) {
-            Some(track) => of(track).map(Some).map_err(|error| (joint, error)),
-            None => Ok(None),
-        })
-        .collect()
+/// Tells where no spline was found and squad stands in.
+fn tell_faults(args: &SampleArgs, clip: &Clip, path: Option<PathKind>, output: &mut Output) {
+    if path != Some(PathKind::Spline) {
+        return;
+    }
+    for joint in 0..clip.joints.len() {
+        let Some(track) = clip.rotation(joint).filter(|track| track.keys.len() > 1) else { continue };
+        for (key, fault) in track.spline_faults(path) {
+            let label = clip.skeleton.label(joint);
+            let text = format!("joint {label}: squad in place of the spline from key {key} on: {fault}");
+            output.note(Path::new(&args.clip), &text);
+        }
+    }
 }
 
 fn poses(
     clip: &Clip,
-    args: &SampleArgs,
-    splines: Option<&[Option<RotationSpline>]>,
+    is_world: bool,
+    path: Option<PathKind>,
     joints: &[usize],
     times: &[f64],
 ) -> Vec<Vec<Place>> {
-    if args.world && splines.is_none() {
-        let worlds = clip.worlds_at_by(times, args.path.and_then(PathName::kind));
+    if is_world {
+        let worlds = clip.worlds_at_by(times, path);
         let place = |joint: usize, time: usize| {
             (worlds.rotation(joint, time).to_xyzw(), worlds.position(joint, time).to_array())
         };
@@ -107,25 +98,11 @@ fn poses(
             .map(|time| joints.iter().map(|&joint| place(joint, time)).collect())
             .collect();
     }
-    let mut locals = clip.locals_at_by(times, args.path.and_then(PathName::kind));
-    for (local, &secs) in locals.iter_mut().zip(times) {
-        for (own, spline) in local.iter_mut().zip(splines.unwrap_or_default()) {
-            if let Some(spline) = spline {
-                own.rotation = spline.at(secs);
-            }
-        }
-    }
     let places = |local: &LocalPose| -> Vec<Place> {
-        if args.world {
-            let world = clip.skeleton.world(local);
-            let place =
-                |&joint: &usize| (world[joint].rotation.to_xyzw(), world[joint].position().to_array());
-            return joints.iter().map(place).collect();
-        }
         let place = |&joint: &usize| (local[joint].rotation.to_xyzw(), local[joint].translation.to_array());
         joints.iter().map(place).collect()
     };
-    locals.iter().map(places).collect()
+    clip.locals_at_by(times, path).iter().map(places).collect()
 }
 
 /// One object. Joint by joint, so that no second copy of all numbers is made.

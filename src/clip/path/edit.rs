@@ -68,6 +68,16 @@ impl RotationTrack {
         self.keys.len().saturating_sub(1)
     }
 
+    /// Into how many steps of at most 120° the way of a segment is cut, with its meant turns; 1 for the short way.
+    ///
+    /// # Panics
+    /// When the segment does not exist.
+    pub fn pieces(&self, segment: usize) -> usize {
+        let is_short =
+            self.segments.of(segment).turn.is_short() || !self.kind_of(segment, None).takes_turns();
+        if is_short { 1 } else { self.lead(segment, |key| self.sound_key(key)).pieces }
+    }
+
     /// This track with another path in some segments. For [`PathKind::Cubic`] a track without tangents gets those of a
     /// smooth curve through its keys, whose signs then follow one another.
     ///

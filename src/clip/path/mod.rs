@@ -30,7 +30,7 @@ pub use edit::PathError;
 pub use kind::{PathKind, Paths};
 pub use peak::Peak;
 pub use segments::{MeantTurn, Segment, Segments};
-pub use spacing::{Pace, Spacing, SpacingError};
+pub use spacing::{Handles, Pace, Spacing, SpacingError};
 
 pub(super) use edit::turn_of_travel;
 pub(super) use play::piece_of;

@@ -7,12 +7,8 @@ use glam::DVec3;
 use crate::clip::{PathKind, Paths, RotationTrack, Times, VectorPath, VectorTrack};
 use crate::rotor::{Rotor, slerp};
 
+use super::follow::{Followed, TOLERANCE_RAD, playable};
 use super::tracks::Interpolation;
-
-/// How far a curve that glTF can't say may be from the straight pieces that stand for it.
-const BAKE_TOLERANCE_RAD: f64 = 1e-4;
-/// A segment is halved at most this often, into 256 pieces.
-const MAX_HALVINGS: u32 = 8;
 
 /// What a sampler holds, ready to be written.
 #[derive(Clone, Debug)]
@@ -29,12 +25,19 @@ pub(super) struct Curve {
     pub interpolation: Interpolation,
     /// Keys that fell together with the next when their times were rounded to 32 bits.
     pub n_merged: usize,
+    /// How far it was measured to be from a track that it only follows, in radians.
+    pub off_rad: f64,
 }
 
 impl Curve {
     /// Of turns. Keys keep their numbers, rounded to 32 bits; signs stay.
     pub(super) fn of_rotation(track: &RotationTrack) -> Self {
-        let track = playable(track);
+        Self::of_followed(&playable(track))
+    }
+
+    /// Of turns that one interpolation says.
+    pub(super) fn of_followed(followed: &Followed<'_>) -> Self {
+        let track = &followed.track;
         let quaternion = |rotor: Rotor| rotor.to_xyzw().map(|number| number as f32);
         let interpolation = match (track.paths.of(0), &track.tangents) {
             (PathKind::Hold, _) => Interpolation::Step,
@@ -47,7 +50,7 @@ impl Curve {
             }
             _ => vec![quaternion(track.keys[key])],
         };
-        Self::new(&track.times, "VEC4", interpolation, per_key)
+        Self { off_rad: followed.off_rad, ..Self::new(&track.times, "VEC4", interpolation, per_key) }
     }
 
     /// Of places or sizes.
@@ -86,6 +89,7 @@ impl Curve {
             kind,
             interpolation,
             n_merged: rounded.len() - kept.len(),
+            off_rad: 0.0,
         }
     }
 
@@ -113,6 +117,22 @@ impl Curve {
         }
     }
 
+    /// What is worth telling of it: keys that fell together, a path that it could not follow within the tolerance.
+    pub(super) fn remarks(&self) -> Vec<String> {
+        let merged = (self.n_merged > 0).then(|| {
+            let count = self.n_merged;
+            format!("{count} key(s) fell together with the next when times were rounded to 32 bits")
+        });
+        let off = (self.off_rad > TOLERANCE_RAD).then(|| {
+            format!(
+                "expected to follow the path within {:.2} degrees, found it up to {:.3} off",
+                TOLERANCE_RAD.to_degrees(),
+                self.off_rad.to_degrees()
+            )
+        });
+        merged.into_iter().chain(off).collect()
+    }
+
     /// Whether both would be written with the very same bits.
     pub(super) fn is_same(&self, other: &Self) -> bool {
         self.interpolation == other.interpolation
@@ -132,70 +152,14 @@ pub(super) fn bits(floats: &[f32]) -> impl Iterator<Item = u32> {
     floats.iter().map(|float| float.to_bits())
 }
 
-/// The track itself where one interpolation says all of it; else a track of short arcs that follows it.
-fn playable(track: &RotationTrack) -> Cow<'_, RotationTrack> {
-    let n_segments = track.keys.len().saturating_sub(1);
-    let first = track.paths.of(0);
-    let is_one_kind = (1..n_segments).all(|segment| track.paths.of(segment) == first);
-    if n_segments == 0 || (is_one_kind && first != PathKind::Squad) {
-        return Cow::Borrowed(track);
-    }
-    let mut secs = Vec::new();
-    let mut keys = Vec::new();
-    for segment in 0..n_segments {
-        let (start, end) = (track.times.at(segment), track.times.at(segment + 1));
-        secs.push(start);
-        keys.push(track.keys[segment]);
-        match track.paths.of(segment) {
-            PathKind::Slerp => {}
-            PathKind::Hold => {
-                // Held until the last moment that 32 bits can tell from the next key.
-                let before = f64::from((end as f32).next_down());
-                if before > start {
-                    secs.push(before);
-                    keys.push(track.keys[segment]);
-                }
-            }
-            PathKind::Squad | PathKind::Cubic | PathKind::Spline | PathKind::BSpline => {
-                let ends = [(start, track.at(start)), (end, track.at(end))];
-                halve(track, ends, MAX_HALVINGS, &mut secs, &mut keys);
-            }
-        }
-    }
-    secs.push(track.times.at(n_segments));
-    keys.push(track.keys[n_segments]);
-    Cow::Owned(RotationTrack::from_rotors(Times::Listed(secs.into()), keys))
-}
-
-/// Adds the keys between two times that a curve of short arcs needs to stay near the track.
-fn halve(
-    track: &RotationTrack,
-    [(start, a), (end, b)]: [(f64, Rotor); 2],
-    halvings: u32,
-    secs: &mut Vec<f64>,
-    keys: &mut Vec<Rotor>,
-) {
-    let is_near = |share: f64| {
-        track.at(start + (end - start) * share).turn_to(slerp(a, b, share)) <= BAKE_TOLERANCE_RAD
-    };
-    if halvings == 0 || [0.25, 0.5, 0.75].into_iter().all(is_near) {
-        return;
-    }
-    let middle = f64::midpoint(start, end);
-    let key = track.at(middle);
-    halve(track, [(start, a), (middle, key)], halvings - 1, secs, keys);
-    secs.push(middle);
-    keys.push(key);
-    halve(track, [(middle, key), (end, b)], halvings - 1, secs, keys);
-}
-
 /// A track of unit rotors whose signs follow one another, with keys put in where neighbours are more than
 /// `largest_arc_rad` apart, so that every player turns the same way.
-pub(super) fn unrolled(track: &RotationTrack, largest_arc_rad: f64) -> RotationTrack {
-    let track = playable(track);
+pub(super) fn unrolled(track: &RotationTrack, largest_arc_rad: f64) -> Followed<'_> {
+    let followed = playable(track);
+    let (track, off_rad) = (&followed.track, followed.off_rad);
     if track.paths.of(0) == PathKind::Cubic && track.tangents.is_some() {
         // The signs and lengths of such keys choose the path.
-        return track.into_owned();
+        return followed;
     }
     let mut secs: Vec<f64> = Vec::with_capacity(track.keys.len());
     let mut keys: Vec<Rotor> = Vec::with_capacity(track.keys.len());
@@ -218,5 +182,6 @@ pub(super) fn unrolled(track: &RotationTrack, largest_arc_rad: f64) -> RotationT
     }
     let path = if track.paths.of(0) == PathKind::Hold { PathKind::Hold } else { PathKind::Slerp };
     let times = if keys.len() == n_keys { track.times.clone() } else { Times::Listed(secs.into()) };
-    RotationTrack { paths: Paths::Every(path), ..RotationTrack::from_rotors(times, keys) }
+    let track = RotationTrack { paths: Paths::Every(path), ..RotationTrack::from_rotors(times, keys) };
+    Followed { track: Cow::Owned(track), off_rad }
 }

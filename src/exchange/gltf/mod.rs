@@ -20,6 +20,7 @@ mod curve;
 mod document;
 mod error;
 mod finish;
+mod follow;
 mod json;
 mod limbs;
 mod new_file;

@@ -23,7 +23,7 @@ const TALLEST_METRES: f64 = 3.0;
 
 /// A new `.glb` that holds a clip: a node for each joint, a plain skinned figure so that any viewer shows it, and the
 /// motion as floats. Rotors are written unit and with signs that follow one another; where neighbouring keys are more
-/// than 120° apart, keys are put between. Lengths stay as they are. `stem` is the file's name without ending and names
+/// than 120° apart, keys are put between. Smooth paths are written as cubics that follow them within 0.01°. Lengths stay as they are. `stem` is the file's name without ending and names
 /// what the clip does not.
 ///
 /// # Errors
@@ -200,13 +200,8 @@ impl Maker {
                 if curve.secs.is_empty() {
                     continue;
                 }
-                if curve.n_merged > 0 {
-                    let text = format!(
-                        "{} key(s) fell together with the next when times were rounded to 32 bits",
-                        curve.n_merged
-                    );
-                    notes.push(Note::new(format!("joint {}", clip.skeleton.label(joint)), text));
-                }
+                let place = || format!("joint {}", clip.skeleton.label(joint));
+                notes.extend(curve.remarks().into_iter().map(|text| Note::new(place(), text)));
                 let input = self.input(&curve.secs);
                 let output = self.accessor(
                     curve.values.iter().flat_map(|number| number.to_le_bytes()),
@@ -267,7 +262,7 @@ fn curves(tracks: &JointTracks) -> Vec<(&'static str, Curve)> {
         }
     }
     if let Some(track) = &tracks.rotation {
-        curves.push(("rotation", Curve::of_rotation(&curve::unrolled(track, LARGEST_ARC_RAD))));
+        curves.push(("rotation", Curve::of_followed(&curve::unrolled(track, LARGEST_ARC_RAD))));
     }
     curves
 }
