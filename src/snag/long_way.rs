@@ -14,14 +14,17 @@ use super::{Remedy, Snag, SnagKind};
 ///
 /// Where the file stores rotors: cubic segments between rotors of opposite sign, which a player turns the long way.
 /// Where it stores angles: steps over half a turn with which the joint really moves. Such a file is played the short way
-/// between frames, so nothing is to be mended unless the user knows what was meant.
+/// between frames, so nothing is to be mended unless the user knows what was meant. Turns that are marked as meant are none.
 pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
-    match &scan.track.stored {
+    let snags: Vec<Snag> = match &scan.track.stored {
         Stored::Rotors => (1..scan.track.keys.len()).filter_map(|key| cubic(&scan, key)).collect(),
         Stored::Angles(angles) => of_angles(&scan, angles),
         Stored::PlaneAngles(degrees) => of_plane_angles(&scan, degrees),
-    }
+    };
+    // Where somebody said how far round it goes, that is how far.
+    let is_said = |snag: &Snag| !scan.track.segments.of(snag.first_key).turn.is_short();
+    snags.into_iter().filter(|snag| !is_said(snag)).collect()
 }
 
 fn cubic(scan: &Scan<'_>, key: usize) -> Option<Snag> {

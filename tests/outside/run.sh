@@ -19,6 +19,14 @@ echo "-- BVH as scipy plays it"
 echo "-- glTF as the three loader plays it"
 node tests/outside/gltf_check.mjs "$program" "$data"/gltf/*.gl* "$data"/gltf/assetgen/*.gltf
 
+# Written by the test suite from paths, spacings and meant turns.
+paths=(target/tmp/path-export/*.glb)
+if [ -e "${paths[0]}" ]; then
+    echo "-- curves of our own as the three loader plays them"
+    node tests/outside/gltf_check.mjs "$program" "${paths[@]}"
+    for file in "${paths[@]}"; do node tests/outside/validate.mjs "$file"; done
+fi
+
 echo "-- every file mended and written; what is written reads back and is valid"
 for file in "$data"/gltf/*.gl* "$data"/gltf/assetgen/*.gltf; do
     name=$(basename "$file")

@@ -297,10 +297,11 @@ fn new_times_new_tracks_and_other_paths_are_written() {
 #[test]
 fn a_smooth_path_is_written_as_keys_that_follow_it() {
     let (document, clips, _) = gltf::read(shared_sampler(), "shared.glb", &no_files).unwrap();
-    let keys: Vec<Rotor> = [0.0, 1.2, -0.4, 0.1].map(|angle| rounded(Axis::Z.rotor(angle))).to_vec();
+    let keys: Vec<Rotor> = [0.0, 1.2, -0.4, 0.1, 0.3].map(|angle| rounded(Axis::Z.rotor(angle))).to_vec();
+    let kinds = [PathKind::Squad, PathKind::Squad, PathKind::Hold, PathKind::Slerp];
     let smooth = RotationTrack {
-        paths: Paths::Each([PathKind::Squad, PathKind::Hold, PathKind::Slerp].into()),
-        ..RotationTrack::from_rotors(Times::Listed([0.0, 1.0, 1.5, 3.0].into()), keys)
+        paths: Paths::Each(kinds.into()),
+        ..RotationTrack::from_rotors(Times::Listed([0.0, 1.0, 1.5, 2.0, 3.0].into()), keys)
     };
     let after = clips[0].with_rotation(0, smooth.clone());
     let output = gltf::write(&document, &[(0, &clips[0], &after)], "x").unwrap();

@@ -3,6 +3,11 @@
 use std::sync::Arc;
 
 /// Which orientations a segment passes through on its way from one key to the next.
+///
+/// Hold, slerp, squad and cubic hang on a segment and its neighbours. A run of neighbouring segments of the kind spline, or
+/// B-spline, is one curve: where a spline run gives way to another kind inside the track it has that neighbour's rate there;
+/// at the track's own ends, and beside a held segment, it does what [`super::Segments::ends`] says. A B-spline run reaches its end
+/// keys, without acceleration. Where no spline is found ([`crate::clip::RotationTrack::spline_faults`]) its run plays as squad.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
 pub enum PathKind {
     /// The first key is held until the second.

@@ -35,6 +35,24 @@ impl RotationTrack {
     ///
     /// At a key the segment that starts there speaks, at the last key the one that ends; before the first and after the last
     /// key nothing moves.
+    ///
+    /// ```
+    /// use turnwright::clip::{MeantTurn, PathKind, RotationTrack, Spacing, Times};
+    /// use turnwright::rotor::{Bivector, Rotor};
+    ///
+    /// // A wheel: a quarter turn from x to y in two seconds, and three whole turns besides.
+    /// let quarter = Rotor::from_plane_angles(Bivector::from_degrees([0.0, 0.0, 90.0]));
+    /// let wheel = RotationTrack::from_rotors(Times::Listed([0.0, 2.0].into()), [Rotor::IDENTITY, quarter]);
+    /// let wheel = wheel.with_turn(0, MeantTurn::new(3)?)?;
+    /// assert!((wheel.motion_at(1.0).rate.to_degrees()[2] - 585.0).abs() < 1e-9);
+    ///
+    /// // Spacing changes how fast and never which way: a standing start, and twice the rate at the end.
+    /// let eased = wheel.with_spacing(0..1, Spacing::EaseIn)?;
+    /// assert_eq!(eased.motion_at(0.0).rate, Bivector::ZERO);
+    /// assert!((eased.highest_rate(0).rate_rad.to_degrees() - 1170.0).abs() < 1e-9);
+    /// assert!(eased.at(1.0).turn_to(wheel.at(0.5)) < 1e-12);
+    /// # Ok::<(), turnwright::clip::PathError>(())
+    /// ```
     pub fn motion_at(&self, time_secs: f64) -> Motion {
         self.motion_at_by(time_secs, None)
     }
