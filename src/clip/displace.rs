@@ -2,7 +2,7 @@
 
 use crate::rotor::{Bivector, Rotor};
 
-use super::key_edit::{NewKey, inserted, with_turned_keys};
+use super::key_edit::{NewKey, with_new_keys, with_turned_keys};
 use super::path::PathKind;
 use super::rotation_track::{RotationTrack, Stored};
 use super::take::Clip;
@@ -143,8 +143,9 @@ fn with_frames(clip: &Clip, push: &Push) -> Option<RotationTrack> {
     }
     let near = 0.25 / clip.grid.rate.max(1e-6);
     let is_new = |secs: &f64| (track.times.at(track.times.nearest(*secs)) - secs).abs() > near;
-    let new = frames.into_iter().filter(is_new).map(|secs| NewKey { secs, rotor: None });
-    Some(new.fold(track.clone(), |track, key| inserted(&track, &key, near)))
+    let new: Vec<NewKey> =
+        frames.into_iter().filter(is_new).map(|secs| NewKey { secs, rotor: None }).collect();
+    Some(with_new_keys(&track, &new, near))
 }
 
 #[cfg(test)]

@@ -5,7 +5,7 @@ use crate::rotor::Rotor;
 use super::path::{MeantTurn, PathKind, Paths, Segments, Spacing};
 use super::rotation_track::{RotationTrack, Stored};
 use super::take::Clip;
-use super::times::Times;
+use super::times::{Place, Times};
 
 /// A change of some keys of one joint's turns.
 #[derive(Clone, Debug, PartialEq)]
@@ -87,7 +87,7 @@ pub fn with_key_edits(clip: &Clip, edits: &[KeyEdit]) -> (Clip, usize) {
         }
         let Some(track) = track else { continue };
         let track = match before {
-            Some(before) if before.stored != Stored::Rotors && before.times != track.times => {
+            Some(before) if before.stored != Stored::Rotors && !has_rows_of(&track, before) => {
                 at_its_own_times(before, &track)
             }
             _ => track,
@@ -104,6 +104,12 @@ pub fn with_key_edits(clip: &Clip, edits: &[KeyEdit]) -> (Clip, usize) {
         *count = (*count).max((result.duration_secs / *step_secs).round() as usize + 1);
     }
     (result, missed)
+}
+
+/// Whether a track still has the rows of another, in the same form.
+fn has_rows_of(track: &RotationTrack, other: &RotationTrack) -> bool {
+    let [own, others] = [track, other].map(|track| std::mem::discriminant(&track.stored));
+    own == others && track.times == other.times
 }
 
 fn changed(
@@ -124,7 +130,7 @@ fn changed(
             Times::Listed([first.secs.max(0.0)].into()),
             vec![first.rotor.unwrap_or(rest)],
         );
-        return Some(others.iter().fold(begin, |track, key| inserted(&track, key, near_secs)));
+        return Some(with_new_keys(&begin, others, near_secs));
     };
     let mut found = |secs: &[f64]| -> Vec<usize> {
         let keys: Vec<usize> = secs.iter().filter_map(|&secs| key_near(&track, secs, near_secs)).collect();
@@ -132,7 +138,12 @@ fn changed(
         keys
     };
     Some(match change {
-        KeyChange::Insert(keys) => keys.iter().fold(track, |track, key| inserted(&track, key, near_secs)),
+        KeyChange::Insert(keys) => {
+            let sound: Vec<NewKey> = keys.iter().filter(|key| key.secs.is_finite()).copied().collect();
+            let lost = keys.len() - sound.len();
+            *missed += lost;
+            with_new_keys(&track, &sound, near_secs)
+        }
         KeyChange::Set(keys) => {
             let changes: Vec<(usize, Rotor)> = keys
                 .iter()
@@ -146,6 +157,7 @@ fn changed(
         KeyChange::Move(moves) => {
             let moves: Vec<(usize, f64)> = moves
                 .iter()
+                .filter(|[_, to]| to.is_finite())
                 .filter_map(|&[from, to]| Some((found(&[from]).first().copied()?, to.max(0.0))))
                 .collect();
             moved(&track, &moves)
@@ -196,7 +208,63 @@ fn key_near(track: &RotationTrack, secs: f64, near_secs: f64) -> Option<usize> {
     (!track.times.is_empty() && (track.times.at(key) - secs).abs() <= near_secs).then_some(key)
 }
 
-pub(super) fn inserted(track: &RotationTrack, new: &NewKey, near_secs: f64) -> RotationTrack {
+/// The track with new keys.
+pub(super) fn with_new_keys(track: &RotationTrack, new: &[NewKey], near_secs: f64) -> RotationTrack {
+    // One by one copies the track each time; that is only needed where a segment has more to divide than its way.
+    if track.segments.are_plain() && track.tangents.is_none() {
+        return with_plain_keys(track, new, near_secs);
+    }
+    new.iter().fold(track.clone(), |track, key| inserted(&track, key, near_secs))
+}
+
+/// As [`with_new_keys`], all at once.
+fn with_plain_keys(track: &RotationTrack, new: &[NewKey], near_secs: f64) -> RotationTrack {
+    let mut changes: Vec<(usize, Rotor)> = Vec::new();
+    let mut added: Vec<(f64, Rotor)> = Vec::new();
+    let times: Vec<f64> = new.iter().map(|key| key.secs.max(0.0)).collect();
+    let played = track.at_all(&times);
+    for ((key, &secs), played) in new.iter().zip(&times).zip(played) {
+        let wanted = key.rotor.and_then(Rotor::try_normalize);
+        match key_near(track, secs, near_secs) {
+            Some(own) => changes.extend(wanted.map(|rotor| (own, rotor.aligned_to(track.keys[own])))),
+            None => added.push((secs, wanted.unwrap_or(played))),
+        }
+    }
+    let track = if changes.is_empty() { track.clone() } else { track.with_keys(&changes) };
+    // Of new keys at the same time the last one counts.
+    added.reverse();
+    added.sort_by(|a, b| a.0.total_cmp(&b.0));
+    added.dedup_by(|later, earlier| later.0 - earlier.0 <= near_secs);
+    if added.is_empty() {
+        return track;
+    }
+    let mut rows: Vec<(f64, Rotor, PathKind)> = track
+        .times
+        .iter()
+        .zip(track.keys.iter())
+        .enumerate()
+        .map(|(key, (secs, &rotor))| (secs, rotor, track.paths.of(key)))
+        .collect();
+    for (secs, rotor) in added {
+        let before = track.times.place(secs).map_or(0, |place| match place {
+            Place::At(key) => key + usize::from(track.times.at(key) < secs),
+            Place::Between(key, _) => key + 1,
+        });
+        let near = track.keys[before.min(track.keys.len() - 1)];
+        rows.push((secs, rotor.aligned_to(near), track.paths.of(before.saturating_sub(1))));
+    }
+    rows.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let kinds: Vec<PathKind> = rows[..rows.len() - 1].iter().map(|row| row.2).collect();
+    RotationTrack {
+        times: Times::Listed(rows.iter().map(|row| row.0).collect()),
+        keys: rows.iter().map(|row| row.1).collect(),
+        paths: Paths::from_kinds(&kinds),
+        stored: Stored::Rotors,
+        ..track
+    }
+}
+
+fn inserted(track: &RotationTrack, new: &NewKey, near_secs: f64) -> RotationTrack {
     let secs = new.secs.max(0.0);
     let (track, key) = if let Some(key) = key_near(track, secs, near_secs) {
         (track.clone(), key)
@@ -239,9 +307,17 @@ pub(super) fn with_turned_keys(track: &RotationTrack, changes: &[(usize, Rotor)]
 fn moved(track: &RotationTrack, moves: &[(usize, f64)]) -> RotationTrack {
     /// Nearer than this no two keys can be: the times would be one in a file of 32 bits.
     const SAME_SECS: f64 = 1e-5;
-    let is_moved = |key: usize| moves.iter().any(|&(own, _)| own == key);
-    let is_free = |secs: f64| moves.iter().all(|&(_, to)| (to - secs).abs() > SAME_SECS);
-    let staying = (0..track.keys.len()).filter(|&key| !is_moved(key)).map(|key| (track.times.at(key), key));
+    let mut is_moved = vec![false; track.keys.len()];
+    for &(key, _) in moves {
+        is_moved[key] = true;
+    }
+    let mut taken: Vec<f64> = moves.iter().map(|&(_, to)| to).collect();
+    taken.sort_by(f64::total_cmp);
+    let is_free = |secs: f64| {
+        let from = taken.partition_point(|&to| to < secs - SAME_SECS);
+        taken.get(from).is_none_or(|&to| to > secs + SAME_SECS)
+    };
+    let staying = (0..track.keys.len()).filter(|&key| !is_moved[key]).map(|key| (track.times.at(key), key));
     let mut rows: Vec<(f64, usize)> = staying.filter(|&(secs, _)| is_free(secs)).collect();
     rows.extend(moves.iter().map(|&(key, to)| (to, key)));
     // Of keys moved onto each other the one named last stays.

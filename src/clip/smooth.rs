@@ -51,7 +51,7 @@ pub struct Smoothing {
 }
 
 /// The widest reach of a kernel to either side, in keys: beyond it a clip's whole motion would be averaged.
-const MOST_REACH: usize = 4096;
+const MOST_REACH: usize = 1024;
 
 impl Smoothing {
     /// A Gaussian without a bound.

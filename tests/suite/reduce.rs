@@ -3,9 +3,11 @@
 
 use std::path::Path;
 
-use turnwright::clip::{Clip, ReduceOptions, RotationTrack, reduced, reduced_together};
+use turnwright::clip::{
+    Clip, MeantTurn, PathKind, ReduceOptions, RotationTrack, Spacing, Times, reduced, reduced_together,
+};
 use turnwright::exchange::{self, OpenOptions, Source, encode, open_bytes};
-use turnwright::rotor::Rotor;
+use turnwright::rotor::{Bivector, Rotor};
 
 use crate::support::{Distance, shared};
 
@@ -155,6 +157,43 @@ fn the_count_is_within_five_percent_of_the_fewest() {
 }
 
 #[test]
+fn curved_paths_spacing_and_meant_turns_are_drawn_within_the_bound() {
+    let keys: Vec<Rotor> = (0..120)
+        .map(|i| {
+            let t = f64::from(i) * 0.1;
+            Rotor::from_plane_angles(Bivector::new((1.3 * t).sin(), 0.7 * t.cos(), 0.2 * t))
+        })
+        .collect();
+    let plain = RotationTrack::from_rotors(Times::Even { step_secs: 0.1, count: 120 }, keys);
+    let all = 0..plain.segment_count();
+    let mut tracks: Vec<(&str, RotationTrack)> = PathKind::ALL
+        .into_iter()
+        .map(|kind| (kind.name(), plain.with_path(all.clone(), kind).unwrap()))
+        .collect();
+    let eased = plain.with_spacing(30..40, Spacing::EaseBoth).unwrap();
+    tracks.push(("eased", eased.clone()));
+    tracks.push(("turned", eased.with_turn(60, MeantTurn::OTHER_WAY).unwrap()));
+    for (name, track) in tracks {
+        for bound_deg in [0.2, 2.0] {
+            let few = track.reduced(f64::to_radians(bound_deg), &[]);
+            let off = largest_change_deg(&track, &few);
+            assert!(off <= bound_deg, "{name}: {off} of {bound_deg}");
+            assert!(
+                few.keys.len() < track.keys.len() || bound_deg < 1.0 || name == "hold",
+                "{name}: {} keys",
+                few.keys.len()
+            );
+        }
+        // A part of it alone: all else plays as before, to the bit of its keys.
+        let part = track.reduced_within(2.0_f64.to_radians(), &[], 20..=90);
+        for secs in [0.0, 0.55, 1.95, 9.05, 11.15] {
+            assert!(track.at(secs).distance_to(&part.at(secs)) < 1e-12, "{name} at {secs}");
+        }
+        assert!(largest_change_deg(&track, &part) <= 2.0, "{name}");
+    }
+}
+
+#[test]
 fn ends_of_limbs_stay_within_their_bound() {
     let Some(source) = open("bvh/cmu_02_01_walk.bvh") else { return };
     let clip = &source.clips[0];
@@ -209,7 +248,7 @@ fn a_table_keeps_the_same_rows_for_all() {
 #[test]
 fn steps_over_120_degrees_are_halved_and_whole_turns_stay() {
     let turn = |degrees: f64| turnwright::rotor::Axis::Z.rotor(degrees.to_radians());
-    let times = |count: usize| turnwright::clip::Times::Even { step_secs: 0.1, count };
+    let times = |count: usize| Times::Even { step_secs: 0.1, count };
     // Ten whole turns at even speed: nothing but the step limit asks for keys.
     let spin = RotationTrack::from_rotors(
         times(361),

@@ -1,5 +1,6 @@
 //! Tracks with fewer keys.
 
+use std::collections::BTreeSet;
 use std::ops::RangeInclusive;
 use std::sync::Arc;
 
@@ -183,11 +184,9 @@ impl Drawn {
 
     /// Where the track's keys `keep` stand.
     fn places_of(&self, keep: &[usize]) -> Vec<usize> {
-        let place = |&key: &usize| self.own.iter().position(|&own| own == Some(key));
-        let mut places: Vec<usize> = keep.iter().filter_map(place).collect();
-        places.sort_unstable();
-        places.dedup();
-        places
+        let wanted: BTreeSet<usize> = keep.iter().copied().collect();
+        let is_wanted = |place: &usize| self.own[*place].is_some_and(|own| wanted.contains(&own));
+        (0..self.own.len()).filter(is_wanted).collect()
     }
 
     /// Leaves those keys alone, and puts keys into the middle of steps that are too large; gives whether there were such.

@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use crate::clip::{self, Clip, KeyEdit};
+use crate::clip::{self, Clip, KeyChange, KeyEdit};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
@@ -16,6 +16,23 @@ use super::others::Others;
 pub struct KeysPass {
     /// The edits.
     pub edits: Vec<KeyEdit>,
+}
+
+/// So far behind the end a key may be put: a slip of the hand should not make a clip of days.
+const FARTHEST_SECS: f64 = 600.0;
+
+/// The times that keys get.
+fn new_times(edit: &KeyEdit) -> Vec<f64> {
+    match &edit.change {
+        KeyChange::Insert(keys) => keys.iter().map(|key| key.secs).collect(),
+        // A key moved to before the start stands at the start.
+        KeyChange::Move(moves) => moves.iter().map(|[_, to]| if *to < 0.0 { 0.0 } else { *to }).collect(),
+        KeyChange::Set(_)
+        | KeyChange::Delete(_)
+        | KeyChange::Path(..)
+        | KeyChange::Space(..)
+        | KeyChange::Turn(..) => Vec::new(),
+    }
 }
 
 impl PassKind for KeysPass {
@@ -33,6 +50,11 @@ impl PassKind for KeysPass {
         let count = clip.skeleton.len();
         if let Some(edit) = self.edits.iter().find(|edit| edit.joint >= count) {
             return Err(PassError::NoSuchJoint { joint: edit.joint, count });
+        }
+        let end = clip.duration_secs + FARTHEST_SECS;
+        if let Some(found) = self.edits.iter().flat_map(new_times).find(|secs| !(0.0..=end).contains(secs)) {
+            let expected = "seconds from 0 to ten minutes behind the end";
+            return Err(PassError::Parameter { name: "key time", expected, found });
         }
         let (clip, missed) = clip::with_key_edits(clip, &self.edits);
         let note = |missed: usize| {

@@ -8,8 +8,8 @@ use super::error::PassError;
 use super::kind::{Outcome, PassKind};
 use super::others::Others;
 
-/// The most frames a clip is resampled to: an hour at 1000 a second.
-const MOST_FRAMES: f64 = 3.6e6;
+/// The most keys that a pass makes, of all joints together: an hour at 120 a second of 115 joints.
+const MOST_KEYS: f64 = 5e7;
 
 /// A key at each frame of another rate, over the whole clip.
 #[derive(Clone, Debug, PartialEq)]
@@ -32,8 +32,9 @@ impl PassKind for ResamplePass {
         if !(self.rate.is_finite() && self.rate > 0.0) {
             return Err(wrong("frames a second above 0"));
         }
-        if clip.duration_secs * self.rate > MOST_FRAMES {
-            return Err(wrong("a rate that gives at most 3600000 frames"));
+        let moving = clip.joints.iter().filter(|tracks| tracks.rotation.is_some()).count().max(1);
+        if clip.duration_secs * self.rate * moving as f64 > MOST_KEYS {
+            return Err(wrong("a rate that gives at most 50 million keys in all"));
         }
         Ok(clip::resampled(clip, self.rate, 0.0, clip.duration_secs).into())
     }
