@@ -81,6 +81,15 @@ fn read(c: &mut Criterion) {
             black_box(shorts(black_box(motion), 0, usize::MAX, &mut own));
         });
     });
+    // As whoever opens a file has to: nothing is there yet to put them into.
+    group.bench_function("its numbers into a new list", |b| {
+        let numbers = || {
+            let mut values = Vec::with_capacity(n);
+            shorts(black_box(motion), 0, usize::MAX, &mut values);
+            values
+        };
+        b.iter_batched(|| (), |()| numbers(), BatchSize::PerIteration);
+    });
     let is_whole = own.len() == standard.len();
     assert!(
         is_whole && own.iter().map(|v| v.to_bits()).eq(standard.iter().map(|v| v.to_bits())),
