@@ -74,6 +74,9 @@ pub(super) struct SnagsArgs {
     /// plausible animation, not clinical advice and not limits for a person; machines need their own limits.
     #[arg(long, value_name = "FILE|adult")]
     pub(super) limits: Option<LimitsName>,
+    /// The clips are loops: look for seams too, where the end does not meet the start
+    #[arg(long = "loop")]
+    pub(super) is_loop: bool,
     #[command(flatten)]
     pub(super) csv: CsvArgs,
 }
@@ -104,6 +107,9 @@ pub(super) struct MendArgs {
     /// plausible animation, not clinical advice and not limits for a person; machines need their own limits.
     #[arg(long, value_name = "FILE|adult")]
     pub(super) limits: Option<LimitsName>,
+    /// The clips are loops: look for seams too, where the end does not meet the start
+    #[arg(long = "loop")]
+    pub(super) is_loop: bool,
     /// Write a proof sheet, .html or .json; for several files one each, named after them
     #[arg(long, value_name = "FILE")]
     pub(super) proof: Option<PathBuf>,

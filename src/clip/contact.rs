@@ -88,6 +88,24 @@ impl Foot {
         }
     }
 
+    /// All joints that it names.
+    pub fn joints(&self) -> [usize; 5] {
+        [self.limb.upper, self.limb.lower, self.limb.end, self.heel.joint, self.ball.joint]
+    }
+
+    /// The same foot where joints are numbered otherwise; `None` when one is missing.
+    #[must_use]
+    pub fn renumbered(&self, now: &dyn Fn(usize) -> Option<usize>) -> Option<Self> {
+        let limb = TwoJointLimb {
+            upper: now(self.limb.upper)?,
+            lower: now(self.limb.lower)?,
+            end: now(self.limb.end)?,
+            ..self.limb
+        };
+        let point = |point: JointPoint| Some(JointPoint { joint: now(point.joint)?, ..point });
+        Some(Self { limb, heel: point(self.heel)?, ball: point(self.ball)? })
+    }
+
     /// The parts that are points of their own.
     pub fn parts(&self) -> &'static [FootPart] {
         if self.heel == self.ball { &[FootPart::Ball] } else { &[FootPart::Heel, FootPart::Ball] }
@@ -236,7 +254,7 @@ fn hysteresis(heights: &[f64], speeds: &[f64], standing: f64, scale: f64) -> Vec
     for (first, last) in runs(&(0..heights.len()).map(held).collect::<Vec<bool>>()) {
         let sure_frames = || (first..=last).filter(|&frame| sure(frame));
         if let (Some(from), Some(to)) = (sure_frames().next(), sure_frames().next_back()) {
-            // Released a moment after it is last sure: as soon as it is faster than half way to moving.
+            // At both ends it rolls: there it counts up to half way to moving.
             let half = |frame: &usize| speeds[*frame] < 0.5 * (SLOW + MOVING) * scale;
             let from = (first..from).rev().take_while(half).last().unwrap_or(from);
             let to = (to + 1..=last).take_while(half).last().unwrap_or(to);

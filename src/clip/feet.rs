@@ -2,6 +2,7 @@
 
 use glam::DVec3;
 
+use crate::skeleton::roles::{Role, Roles, Side};
 use crate::skeleton::{JointKind, Skeleton, TwoJointLimb};
 
 use super::contact::{Foot, JointPoint};
@@ -53,7 +54,26 @@ impl Foot {
 ///
 /// A limb is a chain of joints from a branching of the body to a tip. Its two joints are the pair that bends it best: those that
 /// make its shorter part the longest, with no bending joint between.
+///
+/// Where the skeleton is a human figure by names and shape ([`Roles`]), its two legs are the feet, and a hand that comes down is none.
 pub fn standing_feet(clip: &Clip, up: DVec3) -> Vec<Foot> {
+    let roles = Roles::find(&clip.skeleton);
+    if roles.is_human() {
+        let leg = |side: Side| {
+            let [hip, knee, ankle] =
+                [Role::UpperLeg(side), Role::LowerLeg(side), Role::Foot(side)].map(|role| roles.joint(role));
+            Foot::new(&clip.skeleton, hip?, knee?, ankle?, roles.joint(Role::Toes(side)))
+        };
+        let mut legs: Vec<Foot> = Side::BOTH.into_iter().filter_map(leg).collect();
+        if legs.len() == 2 {
+            legs.sort_by_key(|foot| foot.limb.upper);
+            return legs;
+        }
+    }
+    by_shape(clip, up)
+}
+
+fn by_shape(clip: &Clip, up: DVec3) -> Vec<Foot> {
     let count = clip.grid.count();
     let every = count.div_ceil(POSES).max(1);
     let times: Vec<f64> = (0..count).step_by(every).map(|frame| clip.grid.time(frame)).collect();

@@ -12,6 +12,7 @@ mod displace;
 mod feet;
 mod key_edit;
 mod keys;
+mod loop_seam;
 mod path;
 mod reduce;
 mod resample;
@@ -35,6 +36,7 @@ pub use displace::{Push, PushFrame, pushed};
 pub use feet::standing_feet;
 pub use key_edit::{KeyChange, KeyEdit, NewKey, with_key_edits};
 pub use keys::Keys;
+pub use loop_seam::{LoopSeam, ends_on_first_pose};
 pub use path::{
     Handles, MeantTurn, Pace, PathError, PathKind, Paths, Peak, Segment, Segments, Spacing, SpacingError,
 };

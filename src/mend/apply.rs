@@ -2,11 +2,13 @@
 
 use std::collections::BTreeMap;
 
+use glam::DVec3;
+
 use crate::clip::{Clip, RotationTrack};
-use crate::snag::{Remedy, Snag};
+use crate::snag::{Plant, Remedy, Snag};
 
 use super::draft::Draft;
-use super::{MendError, clamp, numbers, redraw, stuck, take_out};
+use super::{MendError, clamp, loop_close, numbers, plant, redraw, stuck, take_out};
 
 /// `clip` with one snag mended. The same snag in the same clip always gives the same numbers; joints other than the
 /// snag's stay shared, and so does its own when there is nothing to do ([`Remedy::Ask`]).
@@ -23,6 +25,43 @@ pub fn apply(clip: &Clip, snag: &Snag) -> Result<Clip, MendError> {
 /// # Errors
 /// When one of the snags does not fit the clip.
 pub fn apply_all(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
+    let mut mended = clip.clone();
+    for group in snags.chunk_by(|a, b| mends_clip(a) == mends_clip(b)) {
+        mended = if mends_clip(&group[0]) { of_clip(&mended, group)? } else { of_joints(&mended, group)? };
+    }
+    Ok(mended)
+}
+
+/// Whether a mend changes more than the keys of its joint's turns.
+fn mends_clip(snag: &Snag) -> bool {
+    matches!(snag.remedy, Remedy::CloseLoop(_) | Remedy::Hold(_))
+}
+
+/// Loops first, joint by joint, then all plants at once, so that one passes into the next.
+fn of_clip(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
+    let no_joint = |joint: usize| MendError::NoKeys { joint: joint.to_string() };
+    let mut mended = clip.clone();
+    let mut plants: Vec<Plant> = Vec::new();
+    for snag in snags {
+        match snag.remedy {
+            Remedy::CloseLoop(how) if snag.joint < clip.joints.len() => {
+                mended = loop_close::close_joint(&mended, snag.joint, how, DVec3::Y);
+            }
+            Remedy::CloseLoop(_) => return Err(no_joint(snag.joint)),
+            Remedy::Hold(plant) => {
+                if let Some(joint) = plant.foot.joints().into_iter().find(|&joint| joint >= clip.joints.len())
+                {
+                    return Err(no_joint(joint));
+                }
+                plants.push(plant);
+            }
+            _ => {}
+        }
+    }
+    Ok(if plants.is_empty() { mended } else { plant::hold(&mended, &plants) })
+}
+
+fn of_joints(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
     let mut mended = clip.clone();
     let mut drafts: BTreeMap<usize, Draft> = BTreeMap::new();
     for snag in snags {
@@ -83,7 +122,8 @@ pub(super) fn mend(draft: &mut Draft, clip: &Clip, snag: &Snag) {
         Remedy::TakeOut(offset) => take_out::take_out(draft, first, last, |pose| pose * offset),
         Remedy::TakeOutAbove(offset) => take_out::take_out(draft, first, last, |pose| offset * pose),
         Remedy::Clamp(limit) => clamp::clamp(draft, first, last, &limit),
-        Remedy::Ask => {}
+        // Those of the whole clip are no business of one joint's keys.
+        Remedy::Ask | Remedy::CloseLoop(_) | Remedy::Hold(_) => {}
     }
 }
 

@@ -4,6 +4,7 @@ mod apply;
 mod clamp;
 mod draft;
 mod error;
+mod loop_close;
 mod numbers;
 mod others;
 mod plant;
@@ -15,5 +16,6 @@ mod take_out;
 
 pub use apply::{apply, apply_all, change_rad};
 pub use error::MendError;
+pub use loop_close::{LoopOptions, LoopReport, close_loop};
 pub use plant::{Miss, PlantOptions, PlantReport, plant_feet};
 pub use survey::{Survey, SurveyOptions, survey};

@@ -10,7 +10,8 @@ use crate::clip::{
     median_place, slides,
 };
 use crate::rotor::{Bivector, Rotor, chordal_mean};
-use crate::skeleton::{EASE_FROM, EndTurn, Reach};
+use crate::skeleton::{EASE_FROM, EndTurn, Reach, eased};
+use crate::snag::Plant;
 
 use super::draft::Draft;
 
@@ -23,6 +24,9 @@ const HINGE_POSES: usize = 64;
 /// Turns smaller than this change nothing, in radians; and shifts smaller than this share of the leg.
 const LEAST_RAD: f64 = 1e-9;
 const LEAST_SHIFT: f64 = 1e-7;
+
+/// With the ball down, the foot rises about it before its limb has used this share of what is left to full stretch.
+const RISE_FROM: f64 = 0.25;
 
 /// How feet are held.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -68,7 +72,7 @@ pub struct PlantReport {
 /// Holds feet at one place, and with heel and ball both down at one heading, for as long as they are planted.
 ///
 /// Each plant takes the median of its places. Heel and ball are held apart: with one of them down the foot may turn about it. The
-/// correction fades into the free frames with 2t³ − 3t² + 1, from one plant into the next where they are close. The limbs bend in their own
+/// correction fades into the free frames with 2t³ − 3t² + 1, from one plant into the next where they are close. Where a limb is too short for it the foot rises about its ball. The limbs bend in their own
 /// planes and give way softly near full stretch. Frames that need no change keep their numbers bit for bit; a track without a
 /// key at every frame gets some where it is changed.
 ///
@@ -94,7 +98,7 @@ pub fn plant_feet(
     for (index, foot) in feet.iter().enumerate() {
         let own: Vec<PlantedSpan> = spans.iter().filter(|span| span.foot == index).copied().collect();
         if !own.is_empty() {
-            let shift = Corrections::of(&result, foot, &own, options);
+            let shift = Corrections::of(&result, foot, &own, &[], options);
             result = bent(&result, index, foot, &shift, options, &mut report);
         }
     }
@@ -102,10 +106,56 @@ pub fn plant_feet(
     (result, report)
 }
 
+/// The clip with these plants held, several of one foot at once.
+pub(super) fn hold(clip: &Clip, plants: &[Plant]) -> Clip {
+    let count = clip.grid.count();
+    let options = PlantOptions::default();
+    let mut feet: Vec<Foot> = Vec::new();
+    for plant in plants {
+        if !feet.contains(&plant.foot) {
+            feet.push(plant.foot);
+        }
+    }
+    let mut report = PlantReport::default();
+    let mut result = clip.clone();
+    for (foot, own) in feet.iter().enumerate() {
+        let (mut spans, mut still) = (Vec::new(), Vec::new());
+        for plant in plants.iter().filter(|plant| plant.foot == *own) {
+            let parts = [(FootPart::Heel, plant.heel), (FootPart::Ball, plant.ball)];
+            for (part, frames) in parts {
+                let Some((first_frame, last)) = frames.filter(|span| span.0 <= span.1 && span.0 < count)
+                else {
+                    continue;
+                };
+                let last_frame = last.min(count - 1);
+                spans.push(PlantedSpan { foot, part, first_frame, last_frame });
+            }
+            let frames = || plant.heel.iter().chain(&plant.ball);
+            if let (Some(first), Some(last)) =
+                (frames().map(|span| span.0).min(), frames().map(|span| span.1).max())
+            {
+                still.extend(first.checked_sub(plant.free.0.saturating_add(1)));
+                still.extend(
+                    Some(last.saturating_add(plant.free.1.saturating_add(1))).filter(|&frame| frame < count),
+                );
+            }
+        }
+        if !spans.is_empty() {
+            let asked = Corrections::of(&result, own, &spans, &still, &options);
+            result = bent(&result, foot, own, &asked, &options, &mut report);
+        }
+    }
+    result
+}
+
 /// What is to be done to the end of a limb at each frame, in the scene.
 struct Corrections {
     shifts: Vec<DVec3>,
     turns: Vec<Bivector>,
+    /// The ball as seen from the limb's end, in the end's own turn.
+    ball: Vec<DVec3>,
+    /// How far the foot may rise about its ball where the limb is too short, 0 to 1: where the ball is down.
+    may_rise: Vec<f64>,
 }
 
 /// The end of a limb at every frame as it is: its place and turn, and heel and ball from there, seen in its own turn.
@@ -156,7 +206,8 @@ impl EndTrail {
 }
 
 impl Corrections {
-    fn of(clip: &Clip, foot: &Foot, spans: &[PlantedSpan], options: &PlantOptions) -> Self {
+    /// `still`: frames at which nothing is to change.
+    fn of(clip: &Clip, foot: &Foot, spans: &[PlantedSpan], still: &[usize], options: &PlantOptions) -> Self {
         let count = clip.grid.count();
         let trail = EndTrail::of(clip, foot);
         let step_secs = clip.grid.times.median_step().unwrap_or(1.0);
@@ -182,6 +233,10 @@ impl Corrections {
                 }
             }
             flat_turns.push(turn.map(|turn| (turn, flat)));
+        }
+        let is_free = |frame: &&usize| !heel_down[**frame] && !ball_down[**frame];
+        for &frame in still.iter().filter(is_free) {
+            known_turns[frame] = Some(Bivector::ZERO);
         }
         let turns = faded(&known_turns, reach);
 
@@ -217,8 +272,40 @@ impl Corrections {
                 known_shifts[frame] = Some(end - trail.places[frame]);
             }
         }
-        Self { shifts: faded(&known_shifts, reach), turns }
+        for &frame in still.iter().filter(is_free) {
+            known_shifts[frame] = Some(DVec3::ZERO);
+        }
+        let may_rise = smoothed(ball_down, reach / 3);
+        Self { shifts: faded(&known_shifts, reach), turns, ball: trail.ball, may_rise }
     }
+}
+
+/// 1 where a state holds and 0 elsewhere, the change spread over `reach` frames to both sides of it.
+fn smoothed(states: &[bool], reach: usize) -> Vec<f64> {
+    let last = states.len().saturating_sub(1) as isize;
+    let (reach, width) = (reach as isize, (2 * reach + 1) as f64);
+    let at = |frame: isize| f64::from(u8::from(states[frame.clamp(0, last) as usize]));
+    let box_mean = |frame: isize| (-reach..=reach).map(|i| at(frame + i)).sum::<f64>() / width;
+    (0..states.len())
+        .map(|frame| box_mean(frame as isize))
+        .map(|share| share * share * (3.0 - 2.0 * share))
+        .collect()
+}
+
+/// The turn of a foot about its ball that brings its end within reach of a limb's root, by the shortest way; all in the scene. None where it
+/// is within reach, or comes no nearer.
+fn rise(root: DVec3, end: DVec3, ball: DVec3, distance: f64) -> Option<Rotor> {
+    let (to_root, to_end) = (root - ball, end - ball);
+    let (far, length) = (to_root.length(), to_end.length());
+    if end.distance(root) <= distance || far <= 0.0 || length <= 0.0 {
+        return None;
+    }
+    // The angle at the ball between root and end, in the triangle whose third side is the distance.
+    let cos = (far * far + length * length - distance * distance) / (2.0 * far * length);
+    let wanted = cos.clamp(-1.0, 1.0).acos();
+    let now = to_root.angle_between(to_end);
+    let axis = to_end.cross(to_root).try_normalize()?;
+    (wanted < now).then(|| Rotor::from_plane_angles(Bivector::from_axis(axis * (now - wanted))))
 }
 
 /// Runs of frames in a state, first and last.
@@ -297,9 +384,25 @@ fn bent(
             let world = clip.skeleton.world(local);
             let end = &world[limb.end];
             let place = end.scene_from_joint.transform_point3(limb.end_point);
+            let mut target = place + asked.shifts[frame];
+            let mut turn = Rotor::from_plane_angles(asked.turns[frame]) * end.rotation;
+            if asked.may_rise[frame] > 0.0 {
+                let [root, middle, _] = limb.points(&clip.skeleton, local);
+                let full = root.distance(middle) + middle.distance(place);
+                let soft = (options.ease_from * full).max(root.distance(place)).min(full);
+                let wanted = target.distance(root);
+                // With the foot to help, the limb need not become all straight.
+                let near = eased(wanted, soft, soft + RISE_FROM * (full - soft));
+                let distance = wanted + asked.may_rise[frame] * (near - wanted);
+                let ball = target + turn.apply(asked.ball[frame]);
+                if let Some(rise) = rise(root, target, ball, distance) {
+                    target = ball + rise.apply(target - ball);
+                    turn = rise * turn;
+                }
+            }
             let reach = Reach {
-                target: place + asked.shifts[frame],
-                end_turn: EndTurn::To(Rotor::from_plane_angles(asked.turns[frame]) * end.rotation),
+                target,
+                end_turn: EndTurn::To(turn),
                 hinge: (hinge.length() > 0.0).then_some(hinge),
                 ease_from: options.ease_from,
             };

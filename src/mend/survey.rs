@@ -8,9 +8,11 @@ use rayon::prelude::*;
 
 use crate::clip::{Clip, RotationTrack};
 use crate::limit::Limits;
-use crate::snag::{Cancelled, Progress, Remedy, Snag, SnagKind, find, find_past_limit};
+use crate::snag::{
+    Cancelled, Memory, Progress, Remedy, Snag, SnagKind, find, find_in_clip, find_past_limit, find_with,
+};
 
-use super::apply::{asks_others, change_of_keys_rad, mend};
+use super::apply::{apply_all, asks_others, change_of_keys_rad, change_rad, mend};
 use super::draft::Draft;
 
 /// What to look for.
@@ -24,7 +26,7 @@ pub struct SurveyOptions {
 
 impl Default for SurveyOptions {
     fn default() -> Self {
-        Self { kinds: SnagKind::ALL.to_vec(), limits: None }
+        Self { kinds: SnagKind::defaults(), limits: None }
     }
 }
 
@@ -56,7 +58,47 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
 
     let mut working = clip.clone();
     let mut found: Vec<(Snag, f64)> = Vec::new();
-    for kind in kinds {
+
+    // Faults of stored numbers concern one joint alone: all of them in one go, joint by joint.
+    let (own, others): (Vec<SnagKind>, Vec<SnagKind>) =
+        kinds.into_iter().partition(|kind| kind.is_of_joint_alone());
+    let outcomes: Vec<(Vec<(Snag, f64)>, Clip)> = (0..clip.joints.len())
+        .into_par_iter()
+        .map(|joint| {
+            let mut memory = Memory::default();
+            let (mut snags, mut working) = (Vec::new(), clip.clone());
+            for &kind in &own {
+                if stopped.load(Ordering::Relaxed) {
+                    break;
+                }
+                let outcome = mended(&working, joint, find_with(&working, joint, kind, &mut memory));
+                snags.extend(outcome.snags);
+                if let Some(track) = outcome.mended {
+                    working = working.with_rotation(joint, track);
+                }
+                if !progress.report(done.fetch_add(1, Ordering::Relaxed) + 1, total) {
+                    stopped.store(true, Ordering::Relaxed);
+                }
+            }
+            (snags, working)
+        })
+        .collect();
+    if stopped.load(Ordering::Relaxed) {
+        return Err(Cancelled);
+    }
+    for (joint, (snags, own)) in outcomes.into_iter().enumerate() {
+        found.extend(snags);
+        working.joints[joint] = own.joints[joint].clone();
+    }
+    for kind in others {
+        if kind.is_of_clip() {
+            found.extend(of_clip(&mut working, kind));
+            let whole = clip.joints.len();
+            if !progress.report(done.fetch_add(whole, Ordering::Relaxed) + whole, total) {
+                return Err(Cancelled);
+            }
+            continue;
+        }
         let outcomes: Vec<JointOutcome> = (0..clip.joints.len())
             .into_par_iter()
             .map(|joint| {
@@ -84,17 +126,105 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
             }
         }
     }
+    if options.kinds.contains(&SnagKind::Wrap) {
+        let count = found.len();
+        wraps_left(clip, &mut working, &mut found);
+        if found.len() > count {
+            // In mending order from the start, as everyone makes these mends: the same bits.
+            let mut sorted: Vec<Snag> = found.iter().map(|(snag, _)| snag.clone()).collect();
+            sorted.sort_by_key(|snag| (snag.kind, snag.joint, snag.first_key, snag.last_key));
+            working = apply_all(clip, &sorted).unwrap_or(working);
+        }
+    }
     drop_told_twice(&mut found);
     found.sort_by_key(|(snag, _)| (snag.first_frame, snag.joint, snag.kind, snag.first_key, snag.last_key));
     let (snags, changes_rad) = found.into_iter().unzip();
     Ok(Survey { snags, mended: working, changes_rad })
 }
 
+/// Whole turns that a jump of the pose has hidden: where a mend has taken the jump away, what follows may still be stored a turn off.
+/// Such a mend only adds whole turns to keys behind the earlier mend, so that it may be made before or after it.
+fn wraps_left(clip: &Clip, working: &mut Clip, found: &mut Vec<(Snag, f64)>) {
+    let jumped: BTreeSet<usize> = found
+        .iter()
+        .filter(|(snag, _)| {
+            matches!(snag.kind, SnagKind::HalfTurn | SnagKind::Spike) && snag.remedy != Remedy::Ask
+        })
+        .map(|(snag, _)| snag.joint)
+        .collect();
+    for joint in jumped {
+        if clip.same_joint(working, joint) {
+            continue;
+        }
+        // A run follows the numbers before it, so both must be shifted alike.
+        let splits = |wrap: &Snag| {
+            found.iter().any(|(snag, _)| {
+                let is_run = snag.joint == joint && !snag.kind.keeps_pose() && snag.remedy != Remedy::Ask;
+                let run = snag.first_key.saturating_sub(1)..=snag.last_key;
+                let shared = run.clone().filter(|key| (wrap.first_key..=wrap.last_key).contains(key)).count();
+                is_run && shared > 0 && shared < run.count()
+            })
+        };
+        let left: Vec<Snag> = find(working, joint, SnagKind::Wrap)
+            .into_iter()
+            .filter(|snag| matches!(snag.remedy, Remedy::Unwrap(_)))
+            .filter(|snag| !splits(snag))
+            .collect();
+        if let (false, Ok(mended)) = (left.is_empty(), apply_all(working, &left)) {
+            *working = mended;
+            found.extend(left.into_iter().map(|snag| (snag, 0.0)));
+        }
+    }
+}
+
+/// The snags of a kind of the whole clip with the changes of their mends, which are made in `working`.
+fn of_clip(working: &mut Clip, kind: SnagKind) -> Vec<(Snag, f64)> {
+    let snags = find_in_clip(working, kind);
+    // What was found in a clip fits it.
+    let Ok(mended) = apply_all(working, &snags) else { return Vec::new() };
+    let changed = |snag: &Snag| match &snag.remedy {
+        Remedy::Hold(plant) => {
+            let [upper, lower, end, ..] = plant.foot.joints();
+            let frames = snag.first_frame..=snag.last_frame;
+            [upper, lower, end]
+                .map(|joint| change_at_frames_rad(working, &mended, joint, frames.clone()))
+                .into_iter()
+                .fold(0.0, f64::max)
+        }
+        _ => change_rad(working, &mended, snag.joint),
+    };
+    let found = snags.iter().map(|snag| (snag.clone(), changed(snag))).collect();
+    *working = mended;
+    found
+}
+
+fn change_at_frames_rad(
+    before: &Clip,
+    after: &Clip,
+    joint: usize,
+    frames: std::ops::RangeInclusive<usize>,
+) -> f64 {
+    let (Some(old), Some(new)) = (before.rotation(joint), after.rotation(joint)) else { return 0.0 };
+    let secs = frames.map(|frame| before.grid.time(frame));
+    secs.map(|secs| old.at(secs).turn_to(new.at(secs))).fold(0.0, f64::max)
+}
+
 /// A step of stored angles into or out of a half-turn or spike is no long way of its own.
 fn drop_told_twice(found: &mut Vec<(Snag, f64)>) {
+    let stored: BTreeSet<(usize, usize)> = found
+        .iter()
+        .filter(|(snag, _)| snag.kind == SnagKind::LongWay)
+        .map(|(snag, _)| (snag.joint, snag.last_key))
+        .collect();
+    // A jump without a way back that the file stores as a step is told as that.
+    found.retain(|(snag, _)| {
+        let is_lone = snag.kind == SnagKind::HalfTurn && snag.remedy == Remedy::Ask;
+        !(is_lone && stored.contains(&(snag.joint, snag.first_key)))
+    });
     let jumps: BTreeSet<(usize, usize)> = found
         .iter()
         .filter(|(snag, _)| matches!(snag.kind, SnagKind::HalfTurn | SnagKind::Spike))
+        .filter(|(snag, _)| snag.remedy != Remedy::Ask)
         .flat_map(|(snag, _)| [(snag.joint, snag.first_key), (snag.joint, snag.last_key + 1)])
         .collect();
     found.retain(|(snag, _)| {

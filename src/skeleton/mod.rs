@@ -15,4 +15,4 @@ pub use mirror::Mirror;
 pub use pose::{LocalPose, WorldJoint};
 pub use rest::{NoRestChoice, RestChoice};
 pub use transform::Transform;
-pub use two_joint_limb::{EASE_FROM, EndTurn, LimbBend, Reach, TwoJointLimb};
+pub use two_joint_limb::{EASE_FROM, EndTurn, LimbBend, Reach, TwoJointLimb, eased};

@@ -277,14 +277,19 @@ fn seen_from(frame: &DMat3, turn: Rotor) -> Rotor {
 fn reachable(wanted: f64, own: f64, [upper, lower]: [f64; 2], ease_from: f64) -> f64 {
     let full = upper + lower;
     let soft = (ease_from * full).max(own).min(full);
-    let eased = if wanted <= soft {
+    eased(wanted, soft, full).max((upper - lower).abs())
+}
+
+/// A length that is left as it is up to `soft` and beyond comes near `full` and never reaches it, without a corner:
+/// `soft + (full − soft)·tanh((wanted − soft)/(full − soft))`.
+pub fn eased(wanted: f64, soft: f64, full: f64) -> f64 {
+    if wanted <= soft {
         wanted
     } else if soft < full {
         soft + (full - soft) * ((wanted - soft) / (full - soft)).tanh()
     } else {
         full
-    };
-    eased.max((upper - lower).abs())
+    }
 }
 
 /// Where the middle joint stands: how far along the line from root to end, and how far beside it. Law of cosines; the height by

@@ -5,7 +5,7 @@ use std::collections::BTreeMap;
 
 use crate::clip::FileAngles;
 
-use super::branches::{Branches, follow, short};
+use super::branches::{Branches, short};
 use super::scan::Scan;
 
 /// The joint hardly moves below this, whatever its rates.
@@ -54,9 +54,8 @@ pub(super) struct SortedSteps {
 
 /// Pairs each step of a channel with its way back. A pair of which one is a wrap is a run that is whole turns off; so is
 /// all that follows a wrap without a way back. The rest are moves.
-pub(super) fn sorted_steps(scan: &Scan<'_>, angles: &FileAngles) -> SortedSteps {
-    let branches = follow(scan, angles);
-    let steps = angle_steps(scan, angles, &branches);
+pub(super) fn sorted_steps(scan: &Scan<'_>, angles: &FileAngles, branches: &Branches) -> SortedSteps {
+    let steps = angle_steps(scan, angles, branches);
     let mut wraps: BTreeMap<(usize, usize), [i32; 3]> = BTreeMap::new();
     let mut add = |run: (usize, usize), channel: usize, turns: i32| {
         wraps.entry(run).or_default()[channel] = turns;

@@ -1,5 +1,6 @@
 //! One fault that was found, as data.
 
+use crate::clip::Foot;
 use crate::limit::JointLimit;
 use crate::rotor::Rotor;
 
@@ -7,10 +8,6 @@ use super::SnagKind;
 
 /// What the mend of a snag does to the keys `first_key..=last_key` of its joint.
 #[derive(Clone, Copy, Debug, PartialEq)]
-#[expect(
-    clippy::large_enum_variant,
-    reason = "a snag is plain data that can be copied; its text is on the heap anyway"
-)]
 pub enum Remedy {
     /// Brings each key to unit length; no pose changes.
     Normalise,
@@ -32,8 +29,45 @@ pub enum Remedy {
     TakeOutAbove(Rotor),
     /// Bends each key softly from the comfort of this limit to its end, and fades the bend out beside them.
     Clamp(JointLimit),
+    /// Closes the loop at this joint, its places too: the whole track changes.
+    CloseLoop(LoopClose),
+    /// Holds a planted foot by bending its limb: three joints change, at the frames of the plant and beside it.
+    Hold(Plant),
     /// Two ways are equally good: only a person can tell. The mend does nothing.
     Ask,
+}
+
+/// How a loop is closed.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct LoopClose {
+    /// How the difference is spread.
+    pub form: LoopForm,
+    /// Whether the last frame stands for the first of the next round, or the first follows it.
+    pub is_first_again: bool,
+    /// Whether the rates are made to meet too.
+    pub with_rate: bool,
+}
+
+/// How the difference between the ends of a loop is spread.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum LoopForm {
+    /// Evenly over the whole clip.
+    Spread,
+    /// Near the seam alone.
+    Window,
+}
+
+/// A foot that stands for a while.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Plant {
+    /// The foot and its limb.
+    pub foot: Foot,
+    /// First and last frame with the heel down.
+    pub heel: Option<(usize, usize)>,
+    /// First and last frame with the ball down.
+    pub ball: Option<(usize, usize)>,
+    /// Frames before and after in which the foot is free; beyond them nothing changes.
+    pub free: (usize, usize),
 }
 
 /// One rotation fault that was found.

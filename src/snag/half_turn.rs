@@ -7,9 +7,9 @@ use glam::DVec3;
 use crate::clip::{Clip, PathKind};
 use crate::rotor::{Bivector, Rotor};
 
+use super::border::{Offset, Side, joined, offset_at, offset_in_few};
 use super::roughness::angle_of_dot;
 use super::scan::{Finding, Scan};
-use super::seam::{Offset, Side, joined, offset_at, offset_in_few};
 use super::{Remedy, Snag, SnagKind};
 
 /// With fewer keys nothing can be said about what is usual.
@@ -64,7 +64,9 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     let secs: Vec<f64> = scan.track.times.iter().collect();
     let above = runs_above(&scan, &jumps);
     let motion = Motion { scan, poses, secs, jumps, above };
-    motion.runs().into_iter().filter_map(|run| motion.snag(run)).collect()
+    let runs = motion.runs();
+    let lone = motion.lone_jumps(&runs);
+    runs.into_iter().filter_map(|run| motion.snag(run)).chain(lone).collect()
 }
 
 /// The runs of the nearest joint above that jumps at the same times as this one, as keys of this joint; a joint that turns
@@ -324,7 +326,60 @@ impl Motion<'_> {
         }))
     }
 
+    /// Jumps that belong to no run: which side of them is right, nothing shows. They are told and left to a person.
+    fn lone_jumps(&self, runs: &[Run]) -> Vec<Snag> {
+        let scan = &self.scan;
+        let is_end = |jump: usize| runs.iter().any(|run| run.first == jump || run.last + 1 == jump);
+        let is_told_above =
+            |jump: usize| self.above.iter().any(|run| run.first == jump || run.last + 1 == jump);
+        self.jumps
+            .iter()
+            .copied()
+            .filter(|&jump| jump > CALIBRATION_KEYS && !is_end(jump) && !is_told_above(jump))
+            .filter(|&jump| step(scan, jump) >= STEP_RAD && !is_cut(scan, jump))
+            .map(|jump| {
+                scan.snag(Finding {
+                    kind: SnagKind::HalfTurn,
+                    keys: (jump, jump),
+                    size_rad: step(scan, jump),
+                    confidence: 0.4,
+                    remedy: Remedy::Ask,
+                    safe: false,
+                    text: format!(
+                        "{} jumps {:.0}° at frame {} and does not come back: which side is right can't be told",
+                        scan.label(),
+                        step(scan, jump).to_degrees(),
+                        scan.frame(jump)
+                    ),
+                })
+            })
+            .collect()
+    }
+
     fn text(&self, run: Run) -> String {
+        format!("{}; {}", self.what(run), self.why(run))
+    }
+
+    /// Why this side of the jumps is taken for the wrong one.
+    fn why(&self, run: Run) -> String {
+        let (count, own) = (self.poses.len(), run.last + 1 - run.first);
+        if self.above.contains(&run) {
+            return "it goes along with a joint above that flips at the same frames".to_owned();
+        }
+        match (run.first > 0, run.last + 1 < count) {
+            (true, true) if own * 2 <= count => {
+                format!("the {own} frames between are off, the motion before and after them agrees")
+            }
+            (true, true) => {
+                format!(
+                    "the {own} frames between are off, though most of the clip: they are entered and left by one turn"
+                )
+            }
+            _ => format!("of {count} frames these {own} are taken for the wrong side, being fewer"),
+        }
+    }
+
+    fn what(&self, run: Run) -> String {
         let (scan, count) = (&self.scan, self.poses.len());
         let name = scan.label();
         let degrees = |key: usize| step(scan, key).to_degrees().round();

@@ -25,11 +25,15 @@ pub enum SnagKind {
     Stuck,
     /// Beyond the joint's swing or twist limit.
     PastLimit,
+    /// The end of a loop does not meet its start in pose or rate.
+    Seam,
+    /// A planted foot moves.
+    Slide,
 }
 
 impl SnagKind {
     /// All kinds, in mending order.
-    pub const ALL: [Self; 9] = [
+    pub const ALL: [Self; 11] = [
         Self::BrokenValue,
         Self::SignFlip,
         Self::Wrap,
@@ -39,7 +43,34 @@ impl SnagKind {
         Self::Spike,
         Self::Stuck,
         Self::PastLimit,
+        Self::Seam,
+        Self::Slide,
     ];
+
+    /// Whether it is looked for when no kinds are named. A clip need not be a loop, and a foot may be meant to slide.
+    pub const fn is_default(self) -> bool {
+        !matches!(self, Self::Seam | Self::Slide)
+    }
+
+    /// The kinds that are looked for when none are named, in mending order.
+    pub fn defaults() -> Vec<Self> {
+        Self::ALL.into_iter().filter(|kind| kind.is_default()).collect()
+    }
+
+    /// Whether finding it asks nothing of other joints; all these come before all others in mending order.
+    pub const fn is_of_joint_alone(self) -> bool {
+        matches!(self, Self::BrokenValue | Self::SignFlip | Self::Wrap | Self::MirroredAngles | Self::LongWay)
+    }
+
+    /// Whether it is a fault in stored numbers alone, whose mend changes no pose.
+    pub const fn keeps_pose(self) -> bool {
+        matches!(self, Self::SignFlip | Self::Wrap | Self::MirroredAngles)
+    }
+
+    /// Whether it is a fault of the whole clip, which no joint shows by itself.
+    pub const fn is_of_clip(self) -> bool {
+        matches!(self, Self::Seam | Self::Slide)
+    }
 
     /// The name in files, on the command line and on screen.
     pub const fn name(self) -> &'static str {
@@ -53,6 +84,8 @@ impl SnagKind {
             Self::Spike => "spike",
             Self::Stuck => "stuck",
             Self::PastLimit => "past-limit",
+            Self::Seam => "seam",
+            Self::Slide => "slide",
         }
     }
 
@@ -68,6 +101,8 @@ impl SnagKind {
             Self::Spike => 'S',
             Self::Stuck => 'K',
             Self::PastLimit => 'P',
+            Self::Seam => 'O',
+            Self::Slide => 'G',
         }
     }
 
@@ -89,6 +124,8 @@ impl SnagKind {
                 "The joint stands perfectly still for a while inside its motion: its signal dropped out."
             }
             Self::PastLimit => "The joint tilts or twists beyond its limit.",
+            Self::Seam => "Played in a loop, the end does not meet the start in pose or rate.",
+            Self::Slide => "A foot that stands on the ground moves along it.",
         }
     }
 
@@ -110,6 +147,10 @@ impl SnagKind {
             Self::PastLimit => {
                 "Bends the frames back softly, from where the joint is comfortable to its limit."
             }
+            Self::Seam => {
+                "Spreads the difference over the clip, or brings it in near the seam where it is large."
+            }
+            Self::Slide => "Holds the foot at one place by bending its limb.",
         }
     }
 }

@@ -5,21 +5,20 @@ use std::f64::consts::TAU;
 use crate::clip::{Clip, FileAngles, PathKind, Stored};
 use crate::rotor::Bivector;
 
-use super::angle_steps::sorted_steps;
 use super::plane_turns::plane_runs;
 use super::scan::{Finding, Scan};
-use super::{Remedy, Snag, SnagKind};
+use super::{Memory, Remedy, Snag, SnagKind};
 
 /// Finds long ways of one joint.
 ///
 /// Where the file stores rotors: cubic segments between rotors of opposite sign, which a player turns the long way.
 /// Where it stores angles: steps over half a turn with which the joint really moves. Such a file is played the short way
 /// between frames, so nothing is to be mended unless the user knows what was meant. Turns that are marked as meant are none.
-pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
+pub(super) fn find(clip: &Clip, joint: usize, memory: &mut Memory) -> Vec<Snag> {
     let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
     let snags: Vec<Snag> = match &scan.track.stored {
         Stored::Rotors => (1..scan.track.keys.len()).filter_map(|key| cubic(&scan, key)).collect(),
-        Stored::Angles(angles) => of_angles(&scan, angles),
+        Stored::Angles(angles) => of_angles(&scan, angles, memory),
         Stored::PlaneAngles(degrees) => of_plane_angles(&scan, degrees),
     };
     // Where somebody said how far round it goes, that is how far.
@@ -54,9 +53,9 @@ fn cubic(scan: &Scan<'_>, key: usize) -> Option<Snag> {
     }))
 }
 
-fn of_angles(scan: &Scan<'_>, angles: &FileAngles) -> Vec<Snag> {
+fn of_angles(scan: &Scan<'_>, angles: &FileAngles, memory: &mut Memory) -> Vec<Snag> {
     let mut snags: Vec<Snag> = Vec::new();
-    for step in sorted_steps(scan, angles).moves {
+    for step in &memory.steps(scan, angles).moves {
         if snags.last().is_some_and(|snag| snag.last_key == step.key) {
             continue;
         }

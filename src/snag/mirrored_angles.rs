@@ -2,9 +2,9 @@
 
 use crate::clip::{Clip, FileAngles, Stored};
 
-use super::branches::{Branches, follow};
+use super::branches::Branches;
 use super::scan::{Finding, Scan, runs};
-use super::{Remedy, Snag, SnagKind};
+use super::{Memory, Remedy, Snag, SnagKind};
 
 /// Near a pole two angles may run through large steps while the joint hardly turns; from here on that is told.
 const POLE_STEP_DEG: f64 = 50.0;
@@ -13,17 +13,17 @@ const POLE_STEP_DEG: f64 = 50.0;
 const POLE_TURN_DEG: f64 = 20.0;
 
 /// Finds mirrored triples of one joint.
-pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
+pub(super) fn find(clip: &Clip, joint: usize, memory: &mut Memory) -> Vec<Snag> {
     let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
     let Stored::Angles(angles) = &scan.track.stored else { return Vec::new() };
     if angles.axes.len() < 3 {
         return Vec::new();
     }
-    let branches = follow(&scan, angles);
+    let branches = memory.branches(&scan, angles);
     let runs = runs(branches.mirrored.iter().map(|&mirrored| mirrored.then_some(())));
     let mut snags: Vec<Snag> =
         runs.into_iter().map(|(first, last, ())| mirrored(&scan, angles, first, last)).collect();
-    snags.extend((1..angles.degrees.len()).filter_map(|key| at_pole(&scan, angles, &branches, key)));
+    snags.extend((1..angles.degrees.len()).filter_map(|key| at_pole(&scan, angles, branches, key)));
     snags
 }
 

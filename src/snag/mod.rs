@@ -1,6 +1,7 @@
 //! Finding rotation faults. One file a kind; reads clips, never changes them.
 
 mod angle_steps;
+mod border;
 mod branches;
 mod broken_value;
 mod find;
@@ -8,6 +9,7 @@ mod finding;
 mod half_turn;
 mod kind;
 mod long_way;
+mod memory;
 mod mirrored_angles;
 mod past_limit;
 mod plane_turns;
@@ -16,13 +18,15 @@ mod roughness;
 mod scan;
 mod seam;
 mod sign_flip;
+mod slide;
 mod spike;
 mod stuck;
 mod wrap;
 
-pub use find::find;
-pub use finding::{Remedy, Snag};
+pub use find::{find, find_in_clip, find_with};
+pub use finding::{LoopClose, LoopForm, Plant, Remedy, Snag};
 pub use kind::{NoSuchKind, SnagKind};
+pub use memory::Memory;
 pub use past_limit::find_past_limit;
 pub(crate) use plane_turns::nearest_plane_angles;
 pub use progress::{Cancelled, Progress, Unwatched};

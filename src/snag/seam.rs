@@ -1,147 +1,117 @@
-//! The offset with which a joint enters and leaves a run of keys, motion taken out.
+//! A loop whose end does not meet its start.
 
-use crate::rotor::{Bivector, Rotor, slerp};
+use glam::DVec3;
 
-/// Steps to each side of a seam that tell how the joint moves there.
-const NEAR: usize = 4;
+use crate::clip::{Clip, LoopSeam, ends_on_first_pose};
+use crate::rotor::Bivector;
+use crate::skeleton::JointKind;
 
-/// Steps to each side of a seam on which the guesses are tried.
-const TRIED: usize = 14;
+use super::{LoopClose, LoopForm, Remedy, Snag, SnagKind};
 
-/// Which side of the joint's own turn an offset stands on.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub(super) enum Side {
-    /// `q = truth · offset`
-    Bone,
-    /// `q = offset · truth`
-    Parent,
-}
+/// A turn that misses by less than this, and a rate that differs by less than this from frame to frame, is a loop well closed.
+const LEAST_RAD: f64 = 0.25 / 180.0 * std::f64::consts::PI;
 
-/// An offset and how sure it is.
-#[derive(Clone, Copy, Debug)]
-pub(super) struct Offset {
-    pub(super) turn: Rotor,
-    /// Standard deviation in radians.
-    pub(super) sigma_rad: f64,
-}
+/// So many times the least changes from step to step, which are noise, may be missing beside that.
+const NOISES: f64 = 3.0;
 
-impl Side {
-    fn offset(self, truth: Rotor, pose: Rotor) -> Rotor {
-        match self {
-            Self::Bone => truth.reverse() * pose,
-            Self::Parent => pose * truth.reverse(),
-        }
+/// So many times the usual change from step to step, where the pose that comes next is not in the clip.
+const USUAL: f64 = 2.0;
+
+/// Up to here the difference is spread over the whole clip; beyond, that would be seen, and it is brought in near the seam.
+const SPREAD_RAD: f64 = 10.0 / 180.0 * std::f64::consts::PI;
+
+/// A place that misses by less than this share of the figure is a loop well closed.
+const LEAST_SHARE: f64 = 0.005;
+
+/// Steps looked at for what is usual.
+const LOOKED_AT: usize = 400;
+
+/// Finds the joints of a clip whose loop does not close; of fewer than four frames none.
+pub(super) fn find_all(clip: &Clip) -> Vec<Snag> {
+    if clip.grid.count() < 4 {
+        return Vec::new();
     }
+    let is_first_again = ends_on_first_pose(clip, DVec3::Y);
+    (0..clip.joints.len())
+        .filter(|&joint| clip.skeleton.joints()[joint].kind == JointKind::Joint)
+        .filter_map(|joint| of_joint(clip, joint, is_first_again))
+        .collect()
 }
 
-/// The offset of `poses[key..]` against the keys before: `poses[key - 1]` is sound, `poses[key]` off, each side alike as
-/// far as `from..to` reaches. With `leaving` it is the other way round, and the offset is that of `poses[key - 1]`.
-pub(super) fn offset_at(
-    poses: &[Rotor],
-    key: usize,
-    (from, to): (usize, usize),
-    side: Side,
-    leaving: bool,
-) -> Offset {
-    let (a, b) = (poses[key - 1], poses[key]);
-    let mut offset = if leaving { side.offset(b, a) } else { side.offset(a, b) };
-    let mut sigma_rad = 0.0;
-    for _ in 0..3 {
-        let step = |last: usize| {
-            let own = (poses[last - 1].reverse() * poses[last]).plane_angles();
-            // The rates of the side that is off are turned with it.
-            let is_off = (last > key) != leaving;
-            if is_off && side == Side::Bone { turned(offset, own) } else { own }
-        };
-        let (expected, sigma) = expected_step(step, key, from, to);
-        let forward = Rotor::from_plane_angles(expected);
-        offset = if leaving { side.offset(b * forward.reverse(), a) } else { side.offset(a * forward, b) };
-        sigma_rad = sigma;
+fn of_joint(clip: &Clip, joint: usize, is_first_again: bool) -> Option<Snag> {
+    let seam = LoopSeam::of(clip, joint, is_first_again, DVec3::Y);
+    let step_secs = clip.grid.times.median_step()?;
+    let [noise, usual] = usual_changes(clip, joint);
+    let (turn, rate) = (seam.turn.length(), seam.turn_rate.length());
+    let size = figure_size(clip).max(f64::MIN_POSITIVE);
+    let place = seam.place.length() / size;
+    // A pose that comes again does so but for noise; one that comes next is told from the steps on both sides.
+    let doubt = if is_first_again { NOISES * noise } else { USUAL * usual };
+    let misses_turn = turn > LEAST_RAD + doubt;
+    // A rate is told from four steps on each side, each as uncertain as a step.
+    let misses_rate = rate * step_secs > LEAST_RAD + 2.0 * USUAL * usual;
+    let misses_place = place > LEAST_SHARE;
+    if !(misses_turn || misses_rate || misses_place) {
+        return None;
     }
-    Offset { turn: offset, sigma_rad }
-}
-
-/// The offset of a key in a run of few keys against the way across it.
-pub(super) fn offset_in_few(
-    poses: &[Rotor],
-    secs: &[f64],
-    (first, last): (usize, usize),
-    key: usize,
-    side: Side,
-) -> Offset {
-    let (a, b) = (poses[first - 1], poses[last + 1]);
-    let share = (secs[key] - secs[first - 1]) / (secs[last + 1] - secs[first - 1]);
-    // The way across may bend by about a tenth of its length.
-    Offset { turn: side.offset(slerp(a, b, share), poses[key]), sigma_rad: a.turn_to(b) * 0.1 }
-}
-
-/// The mean of two offsets, each counted by its certainty.
-pub(super) fn joined(a: Offset, b: Offset) -> Offset {
-    let (va, vb) = (a.sigma_rad.powi(2).max(1e-12), b.sigma_rad.powi(2).max(1e-12));
-    Offset { turn: slerp(a.turn, b.turn, va / (va + vb)), sigma_rad: (va * vb / (va + vb)).sqrt() }
-}
-
-/// A vector of plane angles turned by a rotor.
-fn turned(by: Rotor, angles: Bivector) -> Bivector {
-    Bivector::from_axis(by.apply(angles.axis()))
-}
-
-/// How the steps around tell the one between: weights of those next to it, and of those one, two … further.
-const GUESSES: [&[f64]; 4] = [&[0.5], &[0.562_5, -0.062_5], &[0.25, 0.25], &[2.0 / 3.0, -1.0 / 6.0]];
-
-/// The step into `key` as the steps around tell it, and its standard deviation: the guess that does best on the sound
-/// steps near by. `step(k)` is the step from `k − 1` to `k`.
-fn expected_step(step: impl Fn(usize) -> Bivector, key: usize, from: usize, to: usize) -> (Bivector, f64) {
-    let before = key.saturating_sub(from + 1).min(NEAR);
-    let after = to.saturating_sub(key).min(NEAR);
-    if before == 0 || after == 0 {
-        return one_sided(step, key, before, after);
+    let label = clip.skeleton.label(joint);
+    let mut said = Vec::new();
+    if misses_turn {
+        said.push(format!("ends {:.1}° away from where it begins", turn.to_degrees()));
     }
-    let low = key.saturating_sub(TRIED).max(from + 1);
-    let high = (key + TRIED).min(to);
-    let steps: Vec<Bivector> = (low..=high).map(step).collect();
-    let at = |k: usize| steps[k - low];
-    let guess = |weights: &[f64], k: usize| {
-        weights
-            .iter()
-            .enumerate()
-            .fold(Bivector::ZERO, |sum, (i, weight)| sum + (at(k - 1 - i) + at(k + 1 + i)) * *weight)
+    if misses_rate {
+        said.push(format!("turns there by {:.0}°/s otherwise than at the start", rate.to_degrees()));
+    }
+    if misses_place {
+        said.push(format!("stands {:.1} % of the figure's size off", place * 100.0));
+    }
+    let form = if turn > SPREAD_RAD { LoopForm::Window } else { LoopForm::Spread };
+    let keys = clip.rotation(joint).map_or(1, |track| track.keys.len().max(1));
+    let last = clip.grid.count() - 1;
+    Some(Snag {
+        kind: SnagKind::Seam,
+        joint,
+        first_key: 0,
+        last_key: keys - 1,
+        first_frame: 0,
+        last_frame: last,
+        first_secs: clip.grid.time(0),
+        last_secs: clip.grid.time(last),
+        size_rad: turn.max(rate * step_secs).max(place),
+        confidence: 1.0,
+        remedy: Remedy::CloseLoop(LoopClose { form, is_first_again, with_rate: misses_rate }),
+        safe: true,
+        text: format!(
+            "In a loop {label} {} ({})",
+            said.join(" and "),
+            if is_first_again {
+                "the last frame is the first again"
+            } else {
+                "the first frame follows the last"
+            }
+        ),
+    })
+}
+
+/// The changes from step to step that one in ten and nine in ten stay below, in radians: noise, and motion.
+fn usual_changes(clip: &Clip, joint: usize) -> [f64; 2] {
+    let Some(track) = clip.rotation(joint).filter(|track| !track.keys.is_empty()) else { return [0.0; 2] };
+    let every = clip.grid.count().div_ceil(LOOKED_AT).max(1);
+    let step = |frame: usize| -> Bivector {
+        (track.at(clip.grid.time(frame)).reverse() * track.at(clip.grid.time(frame + 1))).plane_angles()
     };
-    let mut best = ((at(key - 1) + at(key + 1)) * 0.5, f64::INFINITY);
-    for weights in GUESSES {
-        let reach = weights.len();
-        if key < low + reach || key + reach > high {
-            continue;
-        }
-        let mut misses: Vec<f64> = (low + reach..=high - reach)
-            // Trials must not see the step in question.
-            .filter(|&k| k.abs_diff(key) > reach)
-            .map(|k| (guess(weights, k) - at(k)).length())
-            .collect();
-        if misses.len() < 3 {
-            continue;
-        }
-        misses.sort_by(f64::total_cmp);
-        // The median length of a normal miss in three dimensions is 1.538 of its deviation along each.
-        let sigma = misses[misses.len() / 2] * (1.732 / 1.538);
-        if sigma < best.1 {
-            best = (guess(weights, key), sigma);
-        }
-    }
-    if best.1.is_infinite() {
-        best.1 = (at(key - 1) - at(key + 1)).length();
-    }
-    best
+    let mut changes: Vec<f64> = (0..clip.grid.count().saturating_sub(2))
+        .step_by(every)
+        .map(|frame| (step(frame + 1) - step(frame)).length())
+        .collect();
+    changes.sort_by(f64::total_cmp);
+    [1, 9].map(|tenths| changes.get(changes.len() * tenths / 10).copied().unwrap_or(0.0))
 }
 
-fn one_sided(step: impl Fn(usize) -> Bivector, key: usize, before: usize, after: usize) -> (Bivector, f64) {
-    if before > 0 {
-        let own = step(key - 1);
-        (own, own.length() * 0.5)
-    } else if after > 0 {
-        let own = step(key + 1);
-        (own, own.length() * 0.5)
-    } else {
-        (Bivector::ZERO, 0.05)
-    }
+/// The farthest two joints are apart from the first, at rest.
+fn figure_size(clip: &Clip) -> f64 {
+    let world = clip.skeleton.world(&clip.skeleton.rest_pose());
+    let mut listed = clip.skeleton.listed().map(|joint| world[joint].position());
+    let Some(first) = listed.next() else { return 0.0 };
+    listed.map(|place| place.distance(first)).fold(0.0, f64::max)
 }

@@ -5,17 +5,16 @@ use std::f64::consts::TAU;
 use crate::clip::{Clip, FileAngles, Stored};
 use crate::rotor::Bivector;
 
-use super::angle_steps::sorted_steps;
 use super::plane_turns::{PlaneRun, plane_runs};
 use super::scan::{Finding, Scan};
-use super::{Remedy, Snag, SnagKind};
+use super::{Memory, Remedy, Snag, SnagKind};
 
 /// Finds wraps of one joint.
-pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
+pub(super) fn find(clip: &Clip, joint: usize, memory: &mut Memory) -> Vec<Snag> {
     let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
     match &scan.track.stored {
         Stored::Rotors => Vec::new(),
-        Stored::Angles(angles) => of_angles(&scan, angles),
+        Stored::Angles(angles) => of_angles(&scan, angles, memory),
         Stored::PlaneAngles(degrees) => plane_runs(&scan, degrees)
             .into_iter()
             .filter(|run| run.is_wrap)
@@ -24,8 +23,8 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     }
 }
 
-fn of_angles(scan: &Scan<'_>, angles: &FileAngles) -> Vec<Snag> {
-    sorted_steps(scan, angles).wraps.into_iter().map(|run| unwrap(scan, angles, run)).collect()
+fn of_angles(scan: &Scan<'_>, angles: &FileAngles, memory: &mut Memory) -> Vec<Snag> {
+    memory.steps(scan, angles).wraps.iter().map(|&run| unwrap(scan, angles, run)).collect()
 }
 
 fn unwrap(scan: &Scan<'_>, angles: &FileAngles, (first, last, turns): (usize, usize, [i32; 3])) -> Snag {

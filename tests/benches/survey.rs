@@ -1,12 +1,13 @@
-//! How long does it take to find all snags of a long clip? `cargo bench --no-default-features --bench survey` prints the
-//! median of several runs for 60 joints × 36,000 frames (5 minutes at 120 a second) of stored angles with noise and
-//! faults, and the share of each kind; with `--test` a short clip is surveyed once.
+//! How long does it take to find all snags of a long clip, against reading it? `cargo bench --no-default-features --bench survey` prints the
+//! median processor time of several runs for 60 joints × 36,000 frames (5 minutes at 120 a second) of stored angles with noise
+//! and faults, and the share of each kind; with `--test` a short clip is surveyed once.
 #![expect(clippy::print_stdout, reason = "the numbers are what a bench is for")]
 
 use std::sync::Arc;
-use std::time::Instant;
 
+use cpu_time::ProcessTime;
 use turnwright::clip::{Clip, FileAngles, FrameGrid, JointTracks, RotationTrack, Times};
+use turnwright::exchange::bvh;
 use turnwright::mend::{SurveyOptions, survey};
 use turnwright::rotor::{Axis, EulerOrder};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
@@ -16,26 +17,40 @@ const JOINTS: usize = 60;
 
 fn main() {
     let is_test = std::env::args().any(|argument| argument == "--test");
-    let (frames, runs) = if is_test { (600, 1) } else { (36_000, 5) };
+    let (frames, runs) = if is_test { (600, 1) } else { (36_000, 3) };
     let clip = clip(frames);
-    measure("all kinds", &clip, &SnagKind::ALL, runs);
+    let text = bvh::from_clip(&clip).0;
+    let reading = millis(runs, || {
+        std::hint::black_box(bvh::read(&text, "bench").expect("what was written reads"));
+    });
+    println!("{:16} {reading:8.1} ms  the same clip as BVH, {} MB", "reading", text.len() >> 20);
+    drop(text);
+    measure("all by default", &clip, &SnagKind::defaults(), runs, reading);
     for kind in SnagKind::ALL {
-        measure(kind.name(), &clip, &[kind], runs);
+        measure(kind.name(), &clip, &[kind], runs, reading);
     }
 }
 
-fn measure(name: &str, clip: &Clip, kinds: &[SnagKind], runs: usize) {
-    let options = SurveyOptions { kinds: kinds.to_vec(), ..SurveyOptions::default() };
-    let mut found = 0;
+/// The median processor time of some runs, of all threads together, in ms.
+fn millis(runs: usize, mut job: impl FnMut()) -> f64 {
     let mut millis: Vec<f64> = (0..runs)
         .map(|_| {
-            let start = Instant::now();
-            found = survey(clip, &options, &Unwatched).map_or(0, |survey| survey.snags.len());
+            let start = ProcessTime::now();
+            job();
             start.elapsed().as_secs_f64() * 1e3
         })
         .collect();
     millis.sort_by(f64::total_cmp);
-    println!("{name:16} {:8.1} ms  {found} snags", millis[millis.len() / 2]);
+    millis[millis.len() / 2]
+}
+
+fn measure(name: &str, clip: &Clip, kinds: &[SnagKind], runs: usize, reading: f64) {
+    let options = SurveyOptions { kinds: kinds.to_vec(), ..SurveyOptions::default() };
+    let mut found = 0;
+    let own = millis(runs, || {
+        found = survey(clip, &options, &Unwatched).map_or(0, |survey| survey.snags.len());
+    });
+    println!("{name:16} {own:8.1} ms  {:.2} of reading  {found} snags", own / reading);
 }
 
 /// Waves with noise, and in every joint a spike, a half-turn and a heading that wraps.

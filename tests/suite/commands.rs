@@ -570,7 +570,6 @@ fn slips_are_told_in_one_line() {
         ("snags bare.gltf", "bare.gltf: animations: expected at least one clip, found none"),
         ("snags", "required arguments were not provided"),
         ("snags --kinds wobble crane.csv", "expected a snag kind"),
-        ("snags --loop crane.csv", "unexpected argument '--loop'"),
         ("snags heron.glb#Landing", "expected one of `Take-off`, found `Landing`"),
         ("mend crane.csv", "--output"),
         (

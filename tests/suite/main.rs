@@ -17,6 +17,7 @@
 //! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
 //! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
 //! | `golden` | comparing a picture with the one a person accepted |
+//! | `ground_faults` | seams planted into real loops and slides under real feet: found, closed, held |
 //! | `hostile` | a hundred thousand damaged files of every format: no panic, no hang, no memory beyond the bound |
 //! | `layers` | layers point down only, and the window's libraries stay in `app` |
 //! | `limits` | joint limits: clamps against outside values, what holds for every limit, limits learned; the preset on the real clips |
@@ -54,6 +55,7 @@ mod gltf;
 mod gltf_broken;
 mod gltf_forms;
 mod gltf_write;
+mod ground_faults;
 
 mod golden;
 #[cfg(feature = "gui-tests")]

@@ -34,20 +34,20 @@ impl Random {
     }
 
     /// From 0 up to 1.
-    fn unit(&mut self) -> f64 {
+    pub(crate) fn unit(&mut self) -> f64 {
         (self.bits() >> 11) as f64 / (1u64 << 53) as f64
     }
 
-    fn between(&mut self, low: f64, high: f64) -> f64 {
+    pub(crate) fn between(&mut self, low: f64, high: f64) -> f64 {
         low + (high - low) * self.unit()
     }
 
     /// A whole number from `low` to `high`, both included.
-    fn whole(&mut self, low: usize, high: usize) -> usize {
+    pub(crate) fn whole(&mut self, low: usize, high: usize) -> usize {
         low + (self.bits() % (high - low + 1) as u64) as usize
     }
 
-    fn direction(&mut self) -> DVec3 {
+    pub(crate) fn direction(&mut self) -> DVec3 {
         loop {
             let v = DVec3::new(self.between(-1.0, 1.0), self.between(-1.0, 1.0), self.between(-1.0, 1.0));
             if (0.1..1.0).contains(&v.length()) {
@@ -294,6 +294,8 @@ fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Opti
             };
             (broken, planted((first, last)))
         }
+        // Faults of the whole clip: `ground_faults` plants them.
+        SnagKind::Seam | SnagKind::Slide => return None,
     })
 }
 

@@ -4,7 +4,9 @@
 use std::sync::Arc;
 
 use serde_json::Value;
-use turnwright::clip::{Clip, FileAngles, FrameGrid, JointTracks, PathKind, Paths, RotationTrack, Times};
+use turnwright::clip::{
+    Clip, FileAngles, FrameGrid, JointTracks, PathKind, Paths, RotationTrack, Stored, Times,
+};
 use turnwright::exchange::{OpenOptions, open};
 use turnwright::mend::{self, Survey, SurveyOptions};
 use turnwright::rotor::{Axis, EulerOrder, Rotor, slerp};
@@ -431,6 +433,10 @@ fn the_flips_and_spikes_of_the_dance_are_found() {
             assert!(is_told, "{kind} of {joint} at frame {frame} is missing");
         }
     }
+    // A foot that jumps and does not come back is told.
+    let foot = clip.skeleton.find("LeftFoot").unwrap();
+    let is_told = survey.snags.iter().any(|snag| snag.joint == foot && snag.covers(270));
+    assert!(is_told, "the jump of LeftFoot at frame 270");
     // Mended, the hip goes on where it jumped, but for the two ways in and out that are half a flip.
     let hip = clip.skeleton.find("RightUpLeg").unwrap();
     let widest = |clip: &Clip| {
@@ -583,6 +589,66 @@ fn half_turns_are_taken_out_wherever_they_lie() {
             assert!(error < 0.3, "{runs:?} about {axis:?}: {error}°");
         }
     }
+}
+
+#[test]
+fn whole_turns_that_a_flip_hides_are_taken_out_too() {
+    // A heading that goes round, written as an exporter does, each frame by itself within ±180°; it passes 180° while the joint is flipped.
+    let order = EulerOrder::ZXY;
+    let truth: Vec<Rotor> = (0..240)
+        .map(|i| {
+            order.to_rotor([100.0 + 0.7 * i as f64, 20.0 * (0.05 * i as f64).sin(), 5.0].map(f64::to_radians))
+        })
+        .collect();
+    let stored: Vec<[f64; 3]> = flipped(&truth, &[(100, 140)], Axis::Y)
+        .into_iter()
+        .map(|pose| order.from_rotor(pose, 0.0).map(f64::to_degrees))
+        .collect();
+    let broken = clip_of(vec![angles(stored)]);
+    let survey = all(&broken);
+    let Stored::Angles(mended) = &survey.mended.rotation(0).unwrap().stored else {
+        panic!("angles stay angles")
+    };
+    let step = |pair: &[[f64; 3]]| (0..3).map(|i| (pair[1][i] - pair[0][i]).abs()).fold(0.0, f64::max);
+    let widest = mended.degrees.windows(2).map(step).fold(0.0, f64::max);
+    assert!(widest < 20.0, "{widest}: {:?}", survey.snags.iter().map(|snag| &snag.text).collect::<Vec<_>>());
+    assert!(worst_error_deg(&survey.mended, &truth, 0) < 0.3);
+    // Passes mend kind by kind: that comes to the same.
+    let mut sorted = survey.snags.clone();
+    sorted.sort_by_key(|snag| (snag.kind, snag.joint, snag.first_key));
+    let again = mend::apply_all(&broken, &sorted).unwrap();
+    let Stored::Angles(again) = &again.rotation(0).unwrap().stored else { panic!("angles stay angles") };
+    for (a, b) in again.degrees.iter().zip(mended.degrees.iter()) {
+        assert!((0..3).all(|i| (a[i] - b[i]).abs() < 1e-9), "{a:?} {b:?}");
+    }
+}
+
+#[test]
+fn a_jump_without_a_way_back_is_told_and_left_to_a_person() {
+    let turn = Axis::X.rotor(120.0_f64.to_radians());
+    let keys: Vec<Rotor> = rotors(240)
+        .iter()
+        .enumerate()
+        .map(|(key, own)| if key >= 100 { *own * turn } else { *own })
+        .collect();
+    let broken = clip_of(vec![RotationTrack::from_rotors(even(240), keys)]);
+    let survey = all(&broken);
+    let snag = only(&survey, SnagKind::HalfTurn, (100, 100));
+    assert!(!snag.safe && snag.remedy == Remedy::Ask, "{snag:?}");
+    assert!(snag.text.contains("frame 100") && snag.text.contains("does not come back"), "{}", snag.text);
+    assert!(survey.mended.same_joint(&broken, 0));
+}
+
+#[test]
+fn a_flip_says_why_its_side_is_the_wrong_one() {
+    let broken =
+        clip_of(vec![RotationTrack::from_rotors(even(240), flipped(&rotors(240), &[(60, 90)], Axis::Y))]);
+    let text = only(&all(&broken), SnagKind::HalfTurn, (60, 90)).text;
+    assert!(
+        text.starts_with("joint0 flips 17") || text.contains(" flips 17") || text.contains(" flips 18"),
+        "{text}"
+    );
+    assert!(text.contains("at frame 60 and back at 91; the 31 frames between are off"), "{text}");
 }
 
 #[test]

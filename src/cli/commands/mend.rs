@@ -20,11 +20,12 @@ use crate::proof;
 use crate::snag::{Remedy, Snag, SnagKind};
 
 use super::proof::{SheetFormat, write_sheet};
+use super::snags::chosen_kinds;
 
 /// Gives 0, however much was mended. Files that can't be mended do not keep the others from it.
 pub(crate) fn run(args: &MendArgs, output: &mut Output) -> Result<u8, CliError> {
     let sheet_format = args.proof.as_deref().map(SheetFormat::of).transpose()?;
-    let kinds: Vec<SnagKind> = args.kinds.clone().unwrap_or_else(|| SnagKind::ALL.to_vec());
+    let kinds = chosen_kinds(args.kinds.as_deref(), args.is_loop);
     let choice = Choice {
         kinds: kinds.into_iter().filter(|kind| !args.skip.contains(kind)).collect(),
         has_named_kinds: args.kinds.is_some(),
@@ -92,7 +93,7 @@ pub(super) struct Choice {
 impl Choice {
     /// Every kind, safe mends only.
     pub(super) fn safe() -> Self {
-        Self { kinds: SnagKind::ALL.to_vec(), has_named_kinds: false }
+        Self { kinds: SnagKind::defaults(), has_named_kinds: false }
     }
 
     fn takes(&self, snag: &Snag) -> bool {

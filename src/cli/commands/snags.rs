@@ -16,7 +16,7 @@ use crate::snag::{Snag, SnagKind};
 
 /// Gives 1 when any snag was found. A file that can't be read does not keep the others from being looked through.
 pub(crate) fn run(args: &SnagsArgs, output: &mut Output) -> Result<u8, CliError> {
-    let kinds = args.kinds.clone().unwrap_or_else(|| SnagKind::ALL.to_vec());
+    let kinds = chosen_kinds(args.kinds.as_deref(), args.is_loop);
     let options = args.csv.open_options();
     let limits = LimitsSource::open(args.limits.as_ref())?;
     let mut has_found = false;
@@ -44,6 +44,15 @@ pub(crate) fn run(args: &SnagsArgs, output: &mut Output) -> Result<u8, CliError>
         return Err(CliError::Some { failed, total: args.clips.len() });
     }
     Ok(if has_found { FOUND } else { DONE })
+}
+
+/// The kinds that are looked for: those that are named, or the default ones; with a loop its seam too.
+pub(super) fn chosen_kinds(named: Option<&[SnagKind]>, is_loop: bool) -> Vec<SnagKind> {
+    let mut kinds = named.map_or_else(SnagKind::defaults, <[SnagKind]>::to_vec);
+    if is_loop && !kinds.contains(&SnagKind::Seam) {
+        kinds.push(SnagKind::Seam);
+    }
+    kinds
 }
 
 fn list(

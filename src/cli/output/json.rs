@@ -61,5 +61,7 @@ fn mend_name(snag: &Snag) -> &'static str {
         Remedy::TakeOutAbove(_) => "take-out-above",
         Remedy::Clamp(_) => "clamp",
         Remedy::Ask => "ask",
+        Remedy::CloseLoop(_) => "close-loop",
+        Remedy::Hold(_) => "hold",
     }
 }

@@ -281,7 +281,6 @@ pub(super) struct Snag {
 }
 
 #[derive(Serialize, Deserialize)]
-#[expect(clippy::large_enum_variant, reason = "few at a time, and gone when the scene is read")]
 pub(super) enum Remedy {
     Normalise,
     Negate,
@@ -298,6 +297,25 @@ pub(super) enum Remedy {
     /// Softly, to this limit.
     Clamp(JointLimit),
     Ask,
+    CloseLoop {
+        /// Whether the difference is brought in near the seam alone.
+        window: bool,
+        first_again: bool,
+        with_rate: bool,
+    },
+    Hold {
+        /// Upper joint, lower joint, end.
+        limb: (usize, usize, usize),
+        /// In the end's frame.
+        end_point: (f64, f64, f64),
+        heel: (usize, (f64, f64, f64)),
+        ball: (usize, (f64, f64, f64)),
+        /// First and last frame that they are down.
+        heel_frames: Option<(usize, usize)>,
+        ball_frames: Option<(usize, usize)>,
+        /// Free frames before and after.
+        free: (usize, usize),
+    },
 }
 
 #[derive(Serialize, Deserialize)]

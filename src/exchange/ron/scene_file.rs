@@ -215,7 +215,7 @@ pub fn to_text(
                 let named = |joint: usize| label(index, place, joint);
                 // Mends say the label beside each number.
                 let joints = match pass.step.as_mend() {
-                    Some(_) => BTreeSet::new(),
+                    Some(mend) => mend.limb_joints(),
                     None => pass.step.kind().joints().into_iter().collect(),
                 };
                 mirror::Pass {

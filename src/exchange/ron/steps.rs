@@ -1,13 +1,14 @@
 //! Passes between the document and the file: one pair of arms for each kind.
 
 use crate::blend::{JoinPlace, MixAlong, Reference, RootFrom, Side};
-use crate::clip::{Kernel, KeyEdit, Push, PushFrame, Smoothing};
+use crate::clip::{Foot, JointPoint, Kernel, KeyEdit, Push, PushFrame, Smoothing};
 use crate::rotor::{Bivector, Rotor};
 use crate::scene::{
     BlendForm, BlendPass, ClipRef, KeysPass, MendPass, PassStep, PushPass, ReducePass, ResamplePass, Scope,
     SmoothPass,
 };
-use crate::snag::{Remedy, Snag, SnagKind};
+use crate::skeleton::TwoJointLimb;
+use crate::snag::{LoopClose, LoopForm, Plant, Remedy, Snag, SnagKind};
 
 use super::key_edits::{key_edit_from, key_edit_to};
 use super::limits::{limit_from, limits_pass_from, limits_pass_to};
@@ -221,6 +222,26 @@ fn snag_from(kind: SnagKind, snag: mirror::Snag) -> Result<Snag, String> {
             mirror::Remedy::TakeOutAbove(s, yz, zx, xy) => Remedy::TakeOutAbove(Rotor::new(s, yz, zx, xy)),
             mirror::Remedy::Clamp(limit) => Remedy::Clamp(limit_from(&snag.joint, &limit)?),
             mirror::Remedy::Ask => Remedy::Ask,
+            mirror::Remedy::CloseLoop { window, first_again, with_rate } => Remedy::CloseLoop(LoopClose {
+                form: if window { LoopForm::Window } else { LoopForm::Spread },
+                is_first_again: first_again,
+                with_rate,
+            }),
+            mirror::Remedy::Hold { limb, end_point, heel, ball, heel_frames, ball_frames, free } => {
+                let point =
+                    |(joint, offset): (usize, (f64, f64, f64))| JointPoint { joint, offset: offset.into() };
+                let (upper, lower, end) = limb;
+                Remedy::Hold(Plant {
+                    foot: Foot {
+                        limb: TwoJointLimb { upper, lower, end, end_point: end_point.into() },
+                        heel: point(heel),
+                        ball: point(ball),
+                    },
+                    heel: heel_frames,
+                    ball: ball_frames,
+                    free,
+                })
+            }
         },
         safe: snag.safe,
         text: snag.text,
@@ -248,6 +269,20 @@ fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
             Remedy::TakeOutAbove(r) => mirror::Remedy::TakeOutAbove(r.s, r.yz, r.zx, r.xy),
             Remedy::Clamp(limit) => mirror::Remedy::Clamp(mirror::JointLimit::of(&limit)),
             Remedy::Ask => mirror::Remedy::Ask,
+            Remedy::CloseLoop(how) => mirror::Remedy::CloseLoop {
+                window: how.form == LoopForm::Window,
+                first_again: how.is_first_again,
+                with_rate: how.with_rate,
+            },
+            Remedy::Hold(Plant { foot, heel, ball, free }) => mirror::Remedy::Hold {
+                limb: (foot.limb.upper, foot.limb.lower, foot.limb.end),
+                end_point: foot.limb.end_point.into(),
+                heel: (foot.heel.joint, foot.heel.offset.into()),
+                ball: (foot.ball.joint, foot.ball.offset.into()),
+                heel_frames: heel,
+                ball_frames: ball,
+                free,
+            },
         },
         safe: snag.safe,
         text: snag.text.clone(),

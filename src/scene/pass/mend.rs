@@ -1,10 +1,11 @@
 //! The pass that mends snags of one kind.
 
+use std::collections::BTreeSet;
 use std::sync::Arc;
 
 use crate::clip::{Clip, partly};
 use crate::mend;
-use crate::snag::{Snag, SnagKind};
+use crate::snag::{Remedy, Snag, SnagKind};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
@@ -42,6 +43,15 @@ impl SnagMark {
 }
 
 impl MendPass {
+    /// The joints of the limbs that it bends, beside the joints of its snags.
+    pub fn limb_joints(&self) -> BTreeSet<usize> {
+        let limb = |snag: &Snag| match &snag.remedy {
+            Remedy::Hold(plant) => plant.foot.joints().to_vec(),
+            _ => Vec::new(),
+        };
+        self.snags.iter().flat_map(limb).collect()
+    }
+
     /// A pass that takes its mends whole.
     pub fn new(kind: SnagKind, snags: Vec<Snag>) -> Self {
         Self { kind, snags, amount: 1.0 }
@@ -74,11 +84,20 @@ impl PassKind for MendPass {
     }
 
     fn joints(&self) -> Vec<usize> {
-        self.snags.iter().map(|snag| snag.joint).collect()
+        self.snags.iter().map(|snag| snag.joint).chain(self.limb_joints()).collect()
     }
 
     fn renumber(&mut self, now: &dyn Fn(usize) -> Option<usize>) {
-        self.snags.retain_mut(|snag| now(snag.joint).map(|joint| snag.joint = joint).is_some());
+        self.snags.retain_mut(|snag| {
+            let own = now(snag.joint);
+            if let (Remedy::Hold(plant), Some(_)) = (&mut snag.remedy, own) {
+                match plant.foot.renumbered(now) {
+                    Some(foot) => plant.foot = foot,
+                    None => return false,
+                }
+            }
+            own.map(|joint| snag.joint = joint).is_some()
+        });
     }
 
     /// Kinds that keep every pose are taken whole.
