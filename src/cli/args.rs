@@ -67,8 +67,8 @@ pub(super) struct SnagsArgs {
     #[arg(long, value_name = "K,…", value_delimiter = ',')]
     pub(super) kinds: Option<Vec<SnagKind>>,
     /// Hold the joints against the limits in a file (.csv with the columns joint, `swing_deg`, `twist_min_deg`,
-    /// `twist_max_deg`; or .ron), or
-    /// against the preset adult, for human figures
+    /// `twist_max_deg`; or .ron), against what a clean take (.bvh, .gltf, .glb) keeps to, or against the preset adult, for human
+    /// figures
     ///
     /// The preset adult is made of published ranges, put on the skeleton by the roles of its joints. Population norms for
     /// plausible animation, not clinical advice and not limits for a person; machines need their own limits.
@@ -100,8 +100,8 @@ pub(super) struct MendArgs {
     #[arg(long, value_name = "K,…", value_delimiter = ',')]
     pub(super) skip: Vec<SnagKind>,
     /// Hold the joints against the limits in a file (.csv with the columns joint, `swing_deg`, `twist_min_deg`,
-    /// `twist_max_deg`; or .ron), or
-    /// against the preset adult, for human figures
+    /// `twist_max_deg`; or .ron), against what a clean take (.bvh, .gltf, .glb) keeps to, or against the preset adult, for human
+    /// figures
     ///
     /// The preset adult is made of published ranges, put on the skeleton by the roles of its joints. Population norms for
     /// plausible animation, not clinical advice and not limits for a person; machines need their own limits.

@@ -1,14 +1,13 @@
 //! `--limits`: which limits to hold the joints against.
 
 use std::collections::BTreeSet;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::str::FromStr;
 use std::sync::Arc;
 
-use crate::exchange::limits::LimitsFile;
-use crate::exchange::limits::read;
-use crate::limit::Limits;
-use crate::limit::adult;
+use crate::exchange::limits::{LimitsFile, read};
+use crate::exchange::{self, ClipAddress, OpenOptions};
+use crate::limit::{LearnOptions, Limits, adult, learned};
 use crate::snag::SnagKind;
 
 use super::error::CliError;
@@ -20,7 +19,7 @@ use super::output::Output;
 pub(super) enum LimitsName {
     /// The preset for adult human figures.
     Adult,
-    /// A file of limits.
+    /// A file of limits, or a clip to learn them from.
     File(PathBuf),
 }
 
@@ -30,6 +29,25 @@ impl FromStr for LimitsName {
     fn from_str(text: &str) -> Result<Self, Self::Err> {
         Ok(if text == "adult" { Self::Adult } else { Self::File(PathBuf::from(text)) })
     }
+}
+
+/// Whether a name is that of a clip, to learn limits from. A `.csv` or `.ron` holds limits themselves.
+fn is_clip(path: &Path) -> bool {
+    let path = ClipAddress::parse(&path.to_string_lossy()).path;
+    let ending = path.extension().map(|ending| ending.to_string_lossy().to_lowercase());
+    matches!(ending.as_deref(), Some("bvh" | "gltf" | "glb"))
+}
+
+/// The limits that the first or named clip of a file keeps.
+fn learned_from(path: &Path) -> Result<LimitsFile, CliError> {
+    let address = ClipAddress::parse(&path.to_string_lossy());
+    let source = exchange::open(&address.path, &OpenOptions::default())?;
+    let index = address.clip.as_ref().map_or(Some(0), |name| source.find_clip(name));
+    let clip = index.and_then(|index| source.clips.get(index));
+    let Some(clip) = clip else { return Err(CliError::NoClip { path: path.to_owned() }) };
+    let mut limits = learned(clip, &LearnOptions::default());
+    limits.title = format!("learned from {}", path.file_name().unwrap_or_default().to_string_lossy());
+    Ok(LimitsFile::of(path, &limits, &|joint| clip.skeleton.label(joint).to_owned()))
 }
 
 /// Limits that are ready to be fitted to clips.
@@ -49,7 +67,9 @@ impl LimitsSource {
         Ok(match name {
             None => Self::OfScene,
             Some(LimitsName::Adult) => Self::Adult,
-            Some(LimitsName::File(path)) => Self::File(read(path)?),
+            Some(LimitsName::File(path)) => {
+                Self::File(if is_clip(path) { learned_from(path)? } else { read(path)? })
+            }
         })
     }
 

@@ -146,30 +146,38 @@ impl SwingLimit {
         let pick = |axis: usize| sides_rad[2 * axis + usize::from(point[axis] < 0.0)].max(NARROWEST_RAD);
         let first = nearest_on_ellipse([pick(0), pick(1)], point);
         let is_even = sides_rad[0] == sides_rad[1] && sides_rad[2] == sides_rad[3];
-        let found = if is_even { first } else { self.nearest_by_search(point) };
+        let found = if is_even { first } else { self.nearest_by_search(sides_rad, point) };
         // On the boundary to the last digit, so that clamping again finds it inside.
         scaled(found, 1.0 / self.level(found))
     }
 
-    /// Where two unlike sides blend there is no closed form: the best of many directions, then golden section about it.
-    fn nearest_by_search(&self, point: [f64; 2]) -> [f64; 2] {
+    /// Where two unlike sides blend there is no closed form: the best of many points of the boundary, then golden section about it.
+    fn nearest_by_search(&self, sides_rad: [f64; 4], point: [f64; 2]) -> [f64; 2] {
         const GOLDEN: f64 = 0.618_033_988_749_894_9;
-        const DIRECTIONS: usize = 90;
-        let at = |direction: f64| {
-            let ray = [direction.cos(), direction.sin()];
+        const POINTS: usize = 360;
+        // By the angle of the ellipse and not by direction, so that the points are as close at a narrow end as along the sides.
+        let at = |angle: f64| {
+            let (sin, cos) = angle.sin_cos();
+            let side =
+                |axis: usize, part: f64| sides_rad[2 * axis + usize::from(part < 0.0)].max(NARROWEST_RAD);
+            let ray = [side(0, cos) * cos, side(1, sin) * sin];
             scaled(ray, 1.0 / self.level(ray))
         };
-        let distance = |direction: f64| {
-            let own = at(direction);
+        let distance = |angle: f64| {
+            let own = at(angle);
             (own[0] - point[0]).powi(2) + (own[1] - point[1]).powi(2)
         };
-        let step = std::f64::consts::TAU / DIRECTIONS as f64;
-        let directions = (0..DIRECTIONS).map(|i| i as f64 * step);
-        let best = directions.min_by(|a, b| distance(*a).total_cmp(&distance(*b))).unwrap_or(0.0);
+        let step = std::f64::consts::TAU / POINTS as f64;
+        let angles = (0..POINTS).map(|i| i as f64 * step);
+        let best = angles.min_by(|a, b| distance(*a).total_cmp(&distance(*b))).unwrap_or(0.0);
         let (mut lo, mut hi) = (best - step, best + step);
         for _ in 0..44 {
             let (a, b) = (hi - GOLDEN * (hi - lo), lo + GOLDEN * (hi - lo));
-            if distance(a) < distance(b) { hi = b } else { lo = a }
+            if distance(a) < distance(b) {
+                hi = b;
+            } else {
+                lo = a;
+            }
         }
         at(0.5 * (lo + hi))
     }

@@ -687,6 +687,12 @@ fn the_program_lists_and_mends_what_is_past_a_limit_and_proves_it() {
         stderr.contains("--kinds past-limit: expected limits to hold the joints against, found none"),
         "{stderr}"
     );
+    // The mended leg is a take to learn from: the other one goes beyond it.
+    let (code, stdout, stderr) = run("snags leg.bvh --limits mended.bvh");
+    assert_eq!(code, 1, "{stderr}");
+    assert!(stdout.contains("past its limit (learned from mended.bvh)"), "{stdout}");
+    let (code, stdout, stderr) = run("snags mended.bvh --limits mended.bvh");
+    assert_eq!(code, 0, "{stdout}{stderr}");
     let (code, _, stderr) = run("snags leg.bvh --limits adult");
     assert_eq!(code, 0, "{stderr}");
     assert!(stderr.contains("the preset adult is for human figures"), "{stderr}");

@@ -133,6 +133,13 @@ impl LimitsFile {
         })
     }
 
+    /// Limits by name of joints that are known by number: what [`write()`] would write. `path` serves for messages.
+    pub fn of(path: &Path, limits: &Limits, label: &dyn Fn(usize) -> String) -> Self {
+        let joints =
+            limits.joints.iter().map(|(&joint, limit)| (label(joint), 1, mirror::Joint::of(limit))).collect();
+        Self { path: path.to_owned(), title: limits.title.clone(), joints }
+    }
+
     /// Names of the joints, in the order of the file.
     pub fn joints(&self) -> impl Iterator<Item = &str> {
         self.joints.iter().map(|(label, ..)| label.as_str())

@@ -1,5 +1,6 @@
 //! The preset's numbers, with the source of each.
 
+use std::fmt;
 use std::sync::LazyLock;
 
 /// The three bands of one motion of one part of the body, each with its source.
@@ -13,6 +14,18 @@ pub struct Figure {
     pub degrees: [f64; 3],
     /// Where each of the three comes from; the first word is a key of [`sources`], or `ours`.
     pub sources: [&'static str; 3],
+}
+
+impl fmt::Display for Figure {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        write!(f, "{} {}:", self.part, self.motion)?;
+        for ((band, degrees), source) in
+            ["comfort", "limit", "fault"].iter().zip(self.degrees).zip(self.sources)
+        {
+            write!(f, " {band} {degrees}° ({source}){}", if *band == "fault" { "" } else { "," })?;
+        }
+        Ok(())
+    }
 }
 
 /// What a segment of the spine contributes to the bend of the whole.
@@ -96,6 +109,16 @@ fn rows(text: &'static str) -> impl Iterator<Item = Vec<&'static str>> {
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn a_figure_is_printed_with_its_sources() {
+        let knee =
+            figures().iter().find(|figure| figure.part == "lower_leg" && figure.motion == "flexion").unwrap();
+        assert_eq!(
+            knee.to_string(),
+            "lower_leg flexion: comfort 132° (ROACH1991 132), limit 145° (CDC2011 women 141.9 rounded up), fault 177° (BARTER1957 kneeling 159 + 2 SD 9)"
+        );
+    }
 
     #[test]
     fn every_row_is_read_and_every_number_has_a_source_that_is_listed() {
