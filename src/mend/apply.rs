@@ -8,6 +8,7 @@ use crate::clip::{Clip, RotationTrack};
 use crate::snag::{Plant, Remedy, Snag};
 
 use super::draft::Draft;
+use super::jitter::{self, Noise};
 use super::{MendError, clamp, loop_close, numbers, plant, redraw, stuck, take_out};
 
 /// `clip` with one snag mended. The same snag in the same clip always gives the same numbers; joints other than the
@@ -87,7 +88,7 @@ fn of_joints(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
 
 /// Whether the mend of a snag depends on what other joints do.
 pub(super) fn asks_others(snag: &Snag) -> bool {
-    matches!(snag.remedy, Remedy::FromOthers)
+    matches!(snag.remedy, Remedy::FromOthers | Remedy::Smooth { .. })
 }
 
 fn finished(clip: Clip, joint: usize, draft: Draft) -> Clip {
@@ -118,6 +119,10 @@ pub(super) fn mend(draft: &mut Draft, clip: &Clip, snag: &Snag) {
         Remedy::NearestAngles => numbers::nearest(draft, first, last),
         Remedy::Redraw => redraw::redraw(draft, first, last),
         Remedy::FromOthers => stuck::redraw_from_others(draft, clip, snag.joint, first, last),
+        Remedy::Smooth { noise_rad, quiet_rad, apart_keys } => {
+            let noise = Noise { sigma_rad: noise_rad, quiet_rad, apart_keys };
+            jitter::smooth(draft, clip, snag.joint, (first, last), noise);
+        }
         Remedy::ShortWay => numbers::short_way(draft, last),
         Remedy::TakeOut(offset) => take_out::take_out(draft, first, last, |pose| pose * offset),
         Remedy::TakeOutAbove(offset) => take_out::take_out(draft, first, last, |pose| offset * pose),

@@ -1,9 +1,11 @@
 //! Mending rotation faults. One file a kind of remedy; a mend gives a new clip and leaves the old one as it was.
 
 mod apply;
+mod banded;
 mod clamp;
 mod draft;
 mod error;
+mod jitter;
 mod loop_close;
 mod numbers;
 mod others;

@@ -3,7 +3,7 @@
 use crate::clip::Clip;
 
 use super::{
-    Memory, Snag, SnagKind, broken_value, half_turn, long_way, mirrored_angles, seam, sign_flip, slide,
+    Memory, Snag, SnagKind, broken_value, half_turn, jitter, long_way, mirrored_angles, seam, sign_flip, slide,
     spike, stuck, wrap,
 };
 
@@ -26,6 +26,7 @@ pub fn find_with(clip: &Clip, joint: usize, kind: SnagKind, memory: &mut Memory)
         SnagKind::HalfTurn => half_turn::find(clip, joint),
         SnagKind::Spike => spike::find(clip, joint),
         SnagKind::Stuck => stuck::find(clip, joint),
+        SnagKind::Jitter => jitter::find(clip, joint),
         // Only against limits: see `find_past_limit`.
         SnagKind::PastLimit => Vec::new(),
         SnagKind::Seam | SnagKind::Slide => {

@@ -21,6 +21,15 @@ pub enum Remedy {
     Redraw,
     /// Draws the keys anew from the sound motion on both sides and from what the other joints do meanwhile.
     FromOthers,
+    /// Smooths the keys, by what the poses around and the other joints tell.
+    Smooth {
+        /// Deviation of the noise per axis, in radians.
+        noise_rad: f64,
+        /// The same of the joint's motion where it is sound.
+        quiet_rad: f64,
+        /// Poses so many keys apart tremble each by itself.
+        apart_keys: usize,
+    },
     /// Makes the segment between the two keys take the short way.
     ShortWay,
     /// Multiplies each key by this turn on the bone side, `q ← q · offset`, and blends the seams.

@@ -23,6 +23,8 @@ pub enum SnagKind {
     Spike,
     /// A joint stands perfectly still inside its motion.
     Stuck,
+    /// Noise above the motion's own band.
+    Jitter,
     /// Beyond the joint's swing or twist limit.
     PastLimit,
     /// The end of a loop does not meet its start in pose or rate.
@@ -33,7 +35,7 @@ pub enum SnagKind {
 
 impl SnagKind {
     /// All kinds, in mending order.
-    pub const ALL: [Self; 11] = [
+    pub const ALL: [Self; 12] = [
         Self::BrokenValue,
         Self::SignFlip,
         Self::Wrap,
@@ -42,6 +44,7 @@ impl SnagKind {
         Self::HalfTurn,
         Self::Spike,
         Self::Stuck,
+        Self::Jitter,
         Self::PastLimit,
         Self::Seam,
         Self::Slide,
@@ -83,6 +86,7 @@ impl SnagKind {
             Self::HalfTurn => "half-turn",
             Self::Spike => "spike",
             Self::Stuck => "stuck",
+            Self::Jitter => "jitter",
             Self::PastLimit => "past-limit",
             Self::Seam => "seam",
             Self::Slide => "slide",
@@ -100,6 +104,7 @@ impl SnagKind {
             Self::HalfTurn => 'H',
             Self::Spike => 'S',
             Self::Stuck => 'K',
+            Self::Jitter => 'J',
             Self::PastLimit => 'P',
             Self::Seam => 'O',
             Self::Slide => 'G',
@@ -123,6 +128,7 @@ impl SnagKind {
             Self::Stuck => {
                 "The joint stands perfectly still for a while inside its motion: its signal dropped out."
             }
+            Self::Jitter => "The joint trembles: noise above the band of its own motion.",
             Self::PastLimit => "The joint tilts or twists beyond its limit.",
             Self::Seam => "Played in a loop, the end does not meet the start in pose or rate.",
             Self::Slide => "A foot that stands on the ground moves along it.",
@@ -143,6 +149,9 @@ impl SnagKind {
             Self::Spike => "Draws the frames anew from the sound motion on both sides.",
             Self::Stuck => {
                 "Draws the frames anew from the motion on both sides and from what the other joints do meanwhile."
+            }
+            Self::Jitter => {
+                "Smooths the span without delay, by what the poses around and the other joints tell, within a bound."
             }
             Self::PastLimit => {
                 "Bends the frames back softly, from where the joint is comfortable to its limit."

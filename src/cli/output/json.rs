@@ -56,6 +56,7 @@ fn mend_name(snag: &Snag) -> &'static str {
         Remedy::NearestAngles => "nearest-angles",
         Remedy::Redraw => "redraw",
         Remedy::FromOthers => "redraw-from-others",
+        Remedy::Smooth { .. } => "smooth",
         Remedy::ShortWay => "short-way",
         Remedy::TakeOut(_) => "take-out",
         Remedy::TakeOutAbove(_) => "take-out-above",

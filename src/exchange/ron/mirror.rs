@@ -289,6 +289,8 @@ pub(super) enum Remedy {
     NearestAngles,
     Redraw,
     FromOthers,
+    /// Radians of noise, and of sound motion; keys.
+    Smooth(f64, f64, usize),
     ShortWay,
     /// Scalar, yz, zx, xy.
     TakeOut(f64, f64, f64, f64),

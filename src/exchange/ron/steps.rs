@@ -217,6 +217,9 @@ fn snag_from(kind: SnagKind, snag: mirror::Snag) -> Result<Snag, String> {
             mirror::Remedy::NearestAngles => Remedy::NearestAngles,
             mirror::Remedy::Redraw => Remedy::Redraw,
             mirror::Remedy::FromOthers => Remedy::FromOthers,
+            mirror::Remedy::Smooth(noise_rad, quiet_rad, apart_keys) => {
+                Remedy::Smooth { noise_rad, quiet_rad, apart_keys }
+            }
             mirror::Remedy::ShortWay => Remedy::ShortWay,
             mirror::Remedy::TakeOut(s, yz, zx, xy) => Remedy::TakeOut(Rotor::new(s, yz, zx, xy)),
             mirror::Remedy::TakeOutAbove(s, yz, zx, xy) => Remedy::TakeOutAbove(Rotor::new(s, yz, zx, xy)),
@@ -264,6 +267,9 @@ fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
             Remedy::NearestAngles => mirror::Remedy::NearestAngles,
             Remedy::Redraw => mirror::Remedy::Redraw,
             Remedy::FromOthers => mirror::Remedy::FromOthers,
+            Remedy::Smooth { noise_rad, quiet_rad, apart_keys } => {
+                mirror::Remedy::Smooth(noise_rad, quiet_rad, apart_keys)
+            }
             Remedy::ShortWay => mirror::Remedy::ShortWay,
             Remedy::TakeOut(r) => mirror::Remedy::TakeOut(r.s, r.yz, r.zx, r.xy),
             Remedy::TakeOutAbove(r) => mirror::Remedy::TakeOutAbove(r.s, r.yz, r.zx, r.xy),

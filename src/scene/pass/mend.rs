@@ -111,5 +111,8 @@ impl PassKind for MendPass {
 }
 
 fn moves_poses(kind: SnagKind) -> bool {
-    matches!(kind, SnagKind::HalfTurn | SnagKind::Spike | SnagKind::Stuck | SnagKind::PastLimit)
+    matches!(
+        kind,
+        SnagKind::HalfTurn | SnagKind::Spike | SnagKind::Stuck | SnagKind::Jitter | SnagKind::PastLimit
+    )
 }

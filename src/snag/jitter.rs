@@ -1,0 +1,360 @@
+//! Spans in which a joint trembles: noise above the band of its own motion.
+//!
+//! A fourth difference takes out what a motion does slowly. What it leaves of white noise does not depend on how far apart
+//! the poses are that it is made of; what it leaves of motion grows up to sixteenfold when they are twice as far apart. So
+//! the two together tell noise from motion, without a word about how fast the joint may be; how much noise is usual is told
+//! by the joint's other times, and by the joint on the other side of the body.
+
+use std::f64::consts::PI;
+
+use crate::clip::Clip;
+use crate::rotor::Rotor;
+
+use super::mirror::mirror_of;
+use super::scan::{Finding, Scan};
+use super::{Remedy, Snag, SnagKind};
+
+/// With fewer keys nothing can be said about what is usual.
+const LEAST_KEYS: usize = 24;
+
+/// The shortest span told.
+const SHORTEST_SECS: f64 = 0.2;
+const SHORTEST_KEYS: usize = 7;
+
+/// Levels are taken over this long, and at least so many keys.
+const WINDOW_SECS: f64 = 0.2;
+const WINDOW_KEYS: usize = 8;
+
+/// Poses up to so far apart are compared: what trembles slower is motion.
+const FARTHEST_SECS: f64 = 0.034;
+const LAGS: [usize; 3] = [1, 2, 4];
+
+/// Noise below this, per axis, is not seen.
+const LEAST_RAD: f64 = 0.35 / 180.0 * PI;
+
+/// Jitter is so many times the joint's quiet level: what this share of its windows stays below.
+const TIMES_QUIET: f64 = 4.0;
+const QUIET_SHARE: f64 = 0.3;
+
+/// And so many times what the joint on the other side does at its worst: what this share of its windows stays below.
+const TIMES_MIRROR: f64 = 1.6;
+const WORST_SHARE: f64 = 0.85;
+
+/// A joint that is never quiet is measured by the middle of all joints; without a mirror it must be far above.
+const TIMES_ALL: f64 = 5.0;
+const TIMES_ALL_ALONE: f64 = 7.0;
+
+/// Level at twice the distance, as a share of that at the distance itself: 1 for white noise. Above this it is motion: over
+/// a whole span, and in a window, which has few keys to tell.
+const MOST_GROWTH: f64 = 1.6;
+const MOST_GROWTH_IN_WINDOW: f64 = 2.3;
+
+/// A span of so few keys tells less surely.
+const FEW_KEYS: usize = 12;
+const MOST_GROWTH_IN_FEW: f64 = 1.4;
+
+/// From so many poses a second on noise is told from motion well enough that a mirror joint which trembles too is not
+/// taken for moving that fast.
+const FINE_SECS: f64 = 0.02;
+
+/// The fourth difference of white noise of this deviation in each of three axes has a squared length of 3 · 70 times its
+/// square; the middle length of three normal numbers is 1.538 of their deviation.
+const MIDDLE: f64 = 1.538;
+const FOURTH: f64 = 8.366_6;
+
+/// Finds trembling spans of one joint.
+pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
+    let Some(scan) = Scan::new(clip, joint).filter(|scan| scan.track.keys.len() >= LEAST_KEYS) else {
+        return Vec::new();
+    };
+    let Some(step_secs) = scan.track.times.median_step() else { return Vec::new() };
+    let poses = poses_of(&scan);
+    for lag in LAGS {
+        if lag > 1 && lag as f64 * step_secs > FARTHEST_SECS {
+            break;
+        }
+        let Some(levels) = Levels::new(&poses, step_secs, lag) else { break };
+        let spans = spans(&scan, &poses, &levels, step_secs);
+        if !spans.is_empty() {
+            return spans.into_iter().map(|span| snag(&scan, &levels, span)).collect();
+        }
+    }
+    Vec::new()
+}
+
+/// Unit poses of neighbouring signs; where the file has none, the one before.
+fn poses_of(scan: &Scan<'_>) -> Vec<Rotor> {
+    let mut before = scan.track.sound_key(0);
+    (0..scan.track.keys.len())
+        .map(|key| {
+            before = scan.unit(key).unwrap_or(before).aligned_to(before);
+            before
+        })
+        .collect()
+}
+
+/// How much a joint trembles, key by key and in windows, in radians per axis.
+struct Levels {
+    lag: usize,
+    /// Length of the fourth difference at each key as the deviation of noise that it stands for; 0 at the ends.
+    each: Vec<f64>,
+    /// Keys from one window to the next; each is as wide as twice that.
+    hop: usize,
+    /// The level of each window, and the growth to twice the distance.
+    windows: Vec<(f64, f64)>,
+}
+
+impl Levels {
+    fn new(poses: &[Rotor], step_secs: f64, lag: usize) -> Option<Self> {
+        if poses.len() < 8 * lag + WINDOW_KEYS {
+            return None;
+        }
+        let each = fourth_differences(poses, lag);
+        let width = ((WINDOW_SECS / step_secs) as usize).max(WINDOW_KEYS);
+        let hop = width.div_ceil(2);
+        let (low, high) = (2 * lag, poses.len() - 2 * lag);
+        let mut windows = Vec::new();
+        let mut start = 0;
+        while start < poses.len() {
+            let near = start.max(low).min(high - width.min(high - low))..(start + width).clamp(low, high);
+            let level = middle(&each[near.clone()]);
+            // Growth matters only where there is something to see.
+            let growth =
+                if level >= LEAST_RAD { middle(&twice(poses, lag, near)) / level } else { f64::INFINITY };
+            windows.push((level, growth));
+            start += hop;
+        }
+        Some(Self { lag, each, hop, windows })
+    }
+
+    /// The level that a share of the windows stays below.
+    fn level_of_share(&self, share: f64) -> f64 {
+        self.level_among(share, |_| true)
+    }
+
+    /// The same among some of the windows; 0 without any.
+    fn level_among(&self, share: f64, is_counted: impl Fn(&(f64, f64)) -> bool) -> f64 {
+        let counted = self.windows.iter().filter(|window| is_counted(window));
+        let mut levels: Vec<f64> = counted.map(|window| window.0).collect();
+        if levels.is_empty() {
+            return 0.0;
+        }
+        let rank = ((levels.len() - 1) as f64 * share).round() as usize;
+        *levels.select_nth_unstable_by(rank, f64::total_cmp).1
+    }
+}
+
+/// The noise, in radians per axis, that the fourth difference at each key stands for.
+fn fourth_differences(poses: &[Rotor], lag: usize) -> Vec<f64> {
+    let inside = 2 * lag..poses.len() - 2 * lag;
+    let level = |key: usize| if inside.contains(&key) { fourth_difference(poses, key, lag) } else { 0.0 };
+    (0..poses.len()).map(level).collect()
+}
+
+fn fourth_difference(poses: &[Rotor], key: usize, lag: usize) -> f64 {
+    let [a, b, c, d, e] = [key - 2 * lag, key - lag, key, key + lag, key + 2 * lag].map(|key| poses[key]);
+    let part = |a: f64, b: f64, c: f64, d: f64, e: f64| a + e - 4.0 * (b + d) + 6.0 * c;
+    let parts = [
+        part(a.s, b.s, c.s, d.s, e.s),
+        part(a.yz, b.yz, c.yz, d.yz, e.yz),
+        part(a.zx, b.zx, c.zx, d.zx, e.zx),
+        part(a.xy, b.xy, c.xy, d.xy, e.xy),
+    ];
+    // Rotors turn by half the angle.
+    2.0 * parts.iter().map(|part| part * part).sum::<f64>().sqrt() / (FOURTH * MIDDLE)
+}
+
+/// The same at twice the distance, for the keys of a window that have such.
+fn twice(poses: &[Rotor], lag: usize, keys: std::ops::Range<usize>) -> Vec<f64> {
+    let inside = keys.start.max(4 * lag)..keys.end.min(poses.len() - 4 * lag);
+    inside.map(|key| fourth_difference(poses, key, 2 * lag)).collect()
+}
+
+fn middle(values: &[f64]) -> f64 {
+    if values.is_empty() {
+        return f64::INFINITY;
+    }
+    let mut values = values.to_vec();
+    let rank = values.len() / 2;
+    *values.select_nth_unstable_by(rank, f64::total_cmp).1
+}
+
+/// A span of keys that tremble.
+#[derive(Clone, Copy, Debug)]
+struct Span {
+    first: usize,
+    last: usize,
+    noise: f64,
+    /// What is usual for the joint.
+    quiet: f64,
+    /// How many times the noise is above the least that would be told.
+    clarity: f64,
+}
+
+fn spans(scan: &Scan<'_>, poses: &[Rotor], levels: &Levels, step_secs: f64) -> Vec<Span> {
+    // Most joints have nothing that could be seen.
+    if levels.windows.iter().all(|(level, growth)| *level < LEAST_RAD || *growth > MOST_GROWTH_IN_WINDOW) {
+        return Vec::new();
+    }
+    let own_quiet = levels.level_of_share(QUIET_SHARE);
+    let mirror = mirror_of(&scan.clip.skeleton, scan.joint)
+        .and_then(|other| Scan::new(scan.clip, other))
+        .and_then(|other| Levels::new(&poses_of(&other), other.track.times.median_step()?, levels.lag));
+    let worst_mirrored = mirror.as_ref().map(|mirror| {
+        let trembles = |(level, growth): &(f64, f64)| {
+            step_secs <= FINE_SECS && *level >= LEAST_RAD && *growth <= MOST_GROWTH
+        };
+        mirror.level_among(WORST_SHARE, |window| !trembles(window))
+    });
+    let within = |least: f64| -> Vec<Span> {
+        let trembles = |(level, growth): &(f64, f64)| *level >= least && *growth <= MOST_GROWTH_IN_WINDOW;
+        let mut found = Vec::new();
+        let mut index = 0;
+        while index < levels.windows.len() {
+            if !trembles(&levels.windows[index]) {
+                index += 1;
+                continue;
+            }
+            let start = index;
+            // A window between two that tremble belongs to them.
+            while index < levels.windows.len()
+                && (levels.windows[index].0 >= least
+                    || levels.windows.get(index + 1).is_some_and(|next| next.0 >= least))
+            {
+                index += 1;
+            }
+            found.extend(fitted(levels, poses, (start, index - 1), least, own_quiet));
+        }
+        found.retain(|span| {
+            span.last + 1 - span.first >= SHORTEST_KEYS
+                && scan.secs(span.last) - scan.secs(span.first) >= SHORTEST_SECS - step_secs
+        });
+        found
+    };
+    // The worst of the mirror bounds what is told, unless it is much quieter.
+    let mirrored = worst_mirrored.map_or(0.0, |worst| TIMES_MIRROR * worst);
+    let spans = within(LEAST_RAD.max(TIMES_QUIET * own_quiet).max(mirrored));
+    if !spans.is_empty() || own_quiet < LEAST_RAD {
+        return spans;
+    }
+    // Never quiet: all of it may tremble.
+    let all = level_of_all(scan, levels.lag);
+    let (times, quiet) = match &mirror {
+        Some(mirror) => (TIMES_ALL, mirror.level_of_share(0.5).max(all)),
+        None => (TIMES_ALL_ALONE, all),
+    };
+    let least = LEAST_RAD.max(times * quiet).max(mirrored);
+    if own_quiet < least {
+        return Vec::new();
+    }
+    let mut spans = within(least);
+    for span in &mut spans {
+        span.quiet = quiet;
+    }
+    spans
+}
+
+/// The middle of what is usual for each joint of the clip that moves.
+fn level_of_all(scan: &Scan<'_>, lag: usize) -> f64 {
+    /// Keys that are looked at.
+    const SAMPLED: usize = 2000;
+    let levels: Vec<f64> = scan
+        .clip
+        .skeleton
+        .listed()
+        .filter(|other| *other != scan.joint)
+        .filter_map(|other| {
+            let other = Scan::new(scan.clip, other)?;
+            let count = other.track.keys.len();
+            if count < 8 * lag + WINDOW_KEYS {
+                return None;
+            }
+            let stride = (count / SAMPLED).max(1);
+            let own = |key: usize| other.track.keys[key];
+            let each: Vec<f64> = (2 * lag..count - 2 * lag)
+                .step_by(stride)
+                .map(|key| {
+                    let near = own(key);
+                    let five: [Rotor; 5] =
+                        std::array::from_fn(|i| own(key + i * lag - 2 * lag).aligned_to(near));
+                    fourth_difference(&five, 2, 1)
+                })
+                .filter(|level| level.is_finite() && *level > 0.0)
+                .collect();
+            (each.len() * 2 * stride > count).then(|| middle(&each))
+        })
+        .collect();
+    if levels.is_empty() { f64::INFINITY } else { middle(&levels) }
+}
+
+/// The keys of a row of windows that tremble, from the first to the last whose difference shows it.
+fn fitted(
+    levels: &Levels,
+    poses: &[Rotor],
+    (start, end): (usize, usize),
+    least: f64,
+    quiet: f64,
+) -> Option<Span> {
+    let count = levels.each.len();
+    let (from, to) = (start * levels.hop, ((end + 2) * levels.hop).min(count));
+    // Half the middle level is seldom missed by noise and seldom reached without.
+    let level = middle(&levels.each[from.max(2 * levels.lag)..to.min(count - 2 * levels.lag).max(from + 1)]);
+    let shows =
+        |key: &usize| levels.each[*key] >= (0.5 * level).max(0.5 * least).max(2.0 * quiet.min(least / 4.0));
+    let (low, high) = (from.saturating_sub(levels.hop), (to + levels.hop).min(count));
+    let (first, last) = (first_of_run(levels, low..high, &shows)?, last_of_run(levels, low..high, &shows)?);
+    // The difference shows the noise of the next key too.
+    let first = if first <= 2 * levels.lag { 0 } else { first + levels.lag };
+    let last = if last + 2 * levels.lag + 1 >= count { count - 1 } else { last.saturating_sub(levels.lag) };
+    let inside = first.max(2 * levels.lag)..(last + 1).min(count - 2 * levels.lag);
+    let noise = middle(levels.each.get(inside.clone())?);
+    let growth = middle(&twice(poses, levels.lag, inside)) / noise;
+    let most = if last < first + FEW_KEYS { MOST_GROWTH_IN_FEW } else { MOST_GROWTH };
+    let is_noise = first < last && noise >= 0.8 * least && growth <= most;
+    is_noise.then_some(Span { first, last, noise, quiet, clarity: noise / least })
+}
+
+/// The first key that shows noise, with another soon after.
+fn first_of_run(
+    levels: &Levels,
+    keys: std::ops::Range<usize>,
+    shows: &impl Fn(&usize) -> bool,
+) -> Option<usize> {
+    let shown: Vec<usize> = keys.filter(shows).collect();
+    let near = 2 * levels.lag + 1;
+    shown.windows(3).find(|three| three[2] - three[0] <= 2 * near).map(|three| three[0])
+}
+
+fn last_of_run(
+    levels: &Levels,
+    keys: std::ops::Range<usize>,
+    shows: &impl Fn(&usize) -> bool,
+) -> Option<usize> {
+    let shown: Vec<usize> = keys.filter(shows).collect();
+    let near = 2 * levels.lag + 1;
+    shown.windows(3).rev().find(|three| three[2] - three[0] <= 2 * near).map(|three| three[2])
+}
+
+/// From this clarity on a span may be mended unasked.
+const SAFE_CLARITY: f64 = 1.0;
+
+fn snag(scan: &Scan<'_>, levels: &Levels, span: Span) -> Snag {
+    scan.snag(Finding {
+        kind: SnagKind::Jitter,
+        keys: (span.first, span.last),
+        size_rad: span.noise,
+        confidence: (1.0 - 0.4 / span.clarity).clamp(0.5, 0.97),
+        remedy: Remedy::Smooth {
+            noise_rad: span.noise,
+            quiet_rad: span.quiet.min(span.noise),
+            apart_keys: levels.lag,
+        },
+        safe: span.clarity >= SAFE_CLARITY,
+        text: format!(
+            "{} trembles by about {:.1}° {}",
+            scan.label(),
+            span.noise.to_degrees(),
+            scan.span(span.first, span.last)
+        ),
+    })
+}
