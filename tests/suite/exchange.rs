@@ -156,13 +156,17 @@ fn an_input_is_not_overwritten_unasked() {
     // The same file by another way.
     let detour = folder.path().join("x/../walk.bvh");
     std::fs::create_dir(folder.path().join("x")).unwrap();
-    for target in [&path, &detour] {
+    // The same content under another name.
+    let link = folder.path().join("link.bvh");
+    std::fs::hard_link(&path, &link).unwrap();
+    let targets: &[&PathBuf] = if cfg!(unix) { &[&path, &detour, &link] } else { &[&path, &detour] };
+    for target in targets {
         let error = write(&source, &source.clips, None, target, &Guard::of(&path)).unwrap_err().to_string();
         assert!(error.contains("found the input itself"), "{error}");
     }
     let forced = Guard { force: true, ..Guard::of(&path) };
     write(&source, &source.clips, None, &path, &forced).unwrap();
-    assert!(std::fs::read_dir(folder.path()).unwrap().count() == 2, "no temporary file is left");
+    assert!(std::fs::read_dir(folder.path()).unwrap().count() == 3, "no temporary file is left");
 }
 
 #[test]
