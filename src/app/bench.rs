@@ -140,8 +140,9 @@ impl Project {
 
     /// The document with its open files, for passes that need other clips.
     pub fn library(&self) -> Library {
-        let loaded =
-            |source: &SourceState| source.source().map(|source| Loaded::of_clips(source.clips.clone()));
+        let loaded = |source: &SourceState| {
+            source.source().map(|source| Loaded { clips: source.clips.clone(), skeleton: source.skeleton() })
+        };
         let evaluators = self.findings.iter().map(|findings| Arc::clone(&findings.evaluator)).collect();
         let sources = self.sources.iter().map(loaded).collect();
         Library::new(Arc::clone(self.document()), sources).with_evaluators(evaluators)

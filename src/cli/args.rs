@@ -37,6 +37,7 @@ pub(super) enum Command {
     Snags(SnagsArgs),
     Mend(MendArgs),
     Blend(BlendArgs),
+    Retarget(RetargetArgs),
     Convert(ConvertArgs),
     Sample(SampleArgs),
     Proof(ProofArgs),
@@ -154,6 +155,41 @@ pub(super) struct BlendArgs {
     /// Reach these joints only; all others follow A
     #[arg(long, value_name = "J,…", value_delimiter = ',')]
     pub(super) joints: Option<Vec<String>>,
+    /// Allow an input to be replaced
+    #[arg(long)]
+    pub(super) force: bool,
+    #[command(flatten)]
+    pub(super) csv: CsvArgs,
+}
+
+/// Carry a clip to another skeleton
+///
+/// Joints are matched by names and shape; what is doubtful is said and left out. The result goes into the file of --onto as
+/// one more clip, or under its hierarchy. Exported curves that drive a machine need that machine's own limits and guarding,
+/// local safety codes and a licensed or qualified person.
+#[derive(Debug, Args)]
+pub(super) struct RetargetArgs {
+    /// Clip to carry over
+    #[arg(value_name = "CLIP")]
+    pub(super) clip: String,
+    /// File with the skeleton to carry it to; it need not have a clip
+    #[arg(long, value_name = "SKELETON")]
+    pub(super) onto: String,
+    /// File to write; its extension gives the format
+    #[arg(short, long, value_name = "OUT")]
+    pub(super) output: PathBuf,
+    /// Corrections of the joint map: CSV with the columns source,target
+    #[arg(long, value_name = "FILE")]
+    pub(super) map: Option<PathBuf>,
+    /// Write the joint map that was used
+    #[arg(long, value_name = "FILE")]
+    pub(super) save_map: Option<PathBuf>,
+    /// Hold feet where they stand
+    #[arg(long)]
+    pub(super) plant_feet: bool,
+    /// Write what it came to, .html or .json
+    #[arg(long, value_name = "FILE")]
+    pub(super) proof: Option<PathBuf>,
     /// Allow an input to be replaced
     #[arg(long)]
     pub(super) force: bool,

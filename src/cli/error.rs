@@ -8,6 +8,7 @@ use crate::exchange::{self, WriteError, disk, ron};
 use crate::mend::MendError;
 use crate::proof::ProofError;
 use crate::raster::ImageError;
+use crate::retarget::{MapError, RetargetError};
 use crate::snag::Cancelled;
 
 /// Anything that ends a command.
@@ -69,6 +70,22 @@ pub enum CliError {
         second: PathBuf,
         /// Why.
         source: BlendError,
+    },
+    /// A joint map that can't be read.
+    #[error("{}", with_advice(&format!("{}: {source}", .path.display()), "see what --save-map writes"))]
+    Map {
+        /// The file.
+        path: PathBuf,
+        /// What and where.
+        source: MapError,
+    },
+    /// A clip that can't be carried over.
+    #[error("{}", with_advice(&format!("{}: {source}", .path.display()), "give a map with --map"))]
+    Retarget {
+        /// The target's file.
+        path: PathBuf,
+        /// Why.
+        source: RetargetError,
     },
     /// A picture that can't be made.
     #[error("{path}: {source}; choose another size with --size", path = path.display())]

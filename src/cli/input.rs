@@ -131,7 +131,10 @@ fn open_scene(
     let library = |document: &Document| {
         Library::new(
             Arc::new(document.clone()),
-            sources.iter().map(|source| Some(Loaded::of_clips(source.clips.clone()))).collect(),
+            sources
+                .iter()
+                .map(|source| Some(Loaded { clips: source.clips.clone(), skeleton: source.skeleton() }))
+                .collect(),
         )
     };
     let unfitted = library(&scene.document);
@@ -207,7 +210,7 @@ pub(super) fn no_file_to_open(path: &Path) -> Option<CliError> {
     let is_word = text.chars().all(|letter| letter.is_ascii_lowercase());
     let (expected, found, advice) = if is_word {
         (
-            "a file or one of demo, snags, mend, blend, convert, sample, proof, picture",
+            "a file or one of demo, snags, mend, blend, retarget, convert, sample, proof, picture",
             "neither",
             "see turnwright --help",
         )

@@ -68,6 +68,7 @@ pub fn run(arguments: impl IntoIterator<Item = OsString>) -> Outcome {
         Some(Command::Snags(own)) => commands::snags::run(&own, &mut output),
         Some(Command::Mend(own)) => commands::mend::run(&own, &mut output),
         Some(Command::Blend(own)) => commands::blend::run(&own, &mut output),
+        Some(Command::Retarget(own)) => commands::retarget::run(&own, &mut output),
         Some(Command::Convert(own)) => commands::convert::run(&own, &mut output),
         Some(Command::Sample(own)) => commands::sample::run(&own, &mut output),
         Some(Command::Proof(own)) => commands::proof::run(&own, &mut output),

@@ -4,7 +4,7 @@ use std::borrow::Cow;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use crate::clip::{self, Clip};
+use crate::clip::{self, Clip, RotationTrack, Times, VectorTrack};
 
 use super::source::{Format, OpenError, Origin, Source};
 use super::{Note, bvh, csv, disk, gltf};
@@ -128,9 +128,11 @@ pub fn write(
     guard.check(target)?;
     if Format::of(target)? == Format::Bvh {
         // The text of a long clip is large, and goes out piece by piece.
-        let rows = Rows::of(one_of(source, results, choice)?, Format::Bvh);
+        let clip = one_of(source, results, choice)?;
+        let is_own = source.clips.first().is_some_and(|own| own.has_skeleton_of(clip));
+        let rows = Rows::of(clip, Format::Bvh);
         let mut notes = disk::write_with(target, |out| match &source.origin {
-            Origin::Bvh(document) if has_same_joints(source, &rows.clip) => {
+            Origin::Bvh(document) if is_own && has_same_joints(source, &rows.clip) => {
                 bvh::write_to(document, &source.clips[0], &rows.clip, out)
             }
             _ => bvh::from_clip_to(&rows.clip, out),
@@ -138,7 +140,12 @@ pub fn write(
         notes.extend(rows.note);
         return Ok(Written { path: target.to_owned(), beside: None, notes });
     }
-    let mut encoded = encode(source, results, choice, target)?;
+    let encoded = encode(source, results, choice, target)?;
+    put(source, target, guard, encoded)
+}
+
+/// Puts a result on the disk, with what it refers to.
+fn put(source: &Source, target: &Path, guard: &Guard, mut encoded: Encoded) -> Result<Written, WriteError> {
     take_along(source, target, &mut encoded);
     let beside = match &encoded.beside {
         Some((name, bytes)) => {
@@ -151,6 +158,60 @@ pub fn write(
     };
     disk::write(target, &encoded.bytes)?;
     Ok(Written { path: target.to_owned(), beside, notes: encoded.notes })
+}
+
+/// Writes a clip of the source's skeleton, made elsewhere, to `target`. See [`encode_onto`].
+///
+/// # Errors
+/// As [`write()`].
+pub fn write_onto(source: &Source, clip: &Clip, target: &Path, guard: &Guard) -> Result<Written, WriteError> {
+    guard.check(target)?;
+    let encoded = encode_onto(source, clip, target)?;
+    put(source, target, guard, encoded)
+}
+
+/// The bytes that [`write_onto`] would write.
+///
+/// Into glTF the clip goes as one more animation; its name is the clip's, with a number behind it where that is taken, and everything else
+/// stays. A BVH text keeps its hierarchy and channels and gets new rows, a CSV file its columns. Into another format a new file
+/// is made.
+///
+/// # Errors
+/// As [`write_onto`], but for the disk.
+pub fn encode_onto(source: &Source, clip: &Clip, target: &Path) -> Result<Encoded, WriteError> {
+    let format = Format::of(target)?;
+    let stem = target.file_stem().map(|stem| stem.to_string_lossy().into_owned()).unwrap_or_default();
+    match (&source.origin, format) {
+        (Origin::Gltf(document), Format::Gltf | Format::Glb) => {
+            let base = if clip.name.is_empty() { "retargeted" } else { &clip.name };
+            let is_taken = |name: &str| source.clips.iter().any(|own| own.name == name);
+            let numbered = (2..).map(|number| format!("{base} {number}"));
+            let name = std::iter::once(base.to_owned()).chain(numbered).find(|name| !is_taken(name));
+            let name = name.unwrap_or_default();
+            let output = gltf::write_added(document, clip, &name, &stem, form(format))
+                .map_err(|source| WriteError::Gltf { path: target.to_owned(), source })?;
+            Ok(Encoded::from(output))
+        }
+        (Origin::Bvh(document), Format::Bvh) => {
+            Ok(Encoded::alone(bvh::write(document, &source.clips[0], &whole(clip))))
+        }
+        (Origin::Csv(document), Format::Csv) if has_same_joints(source, clip) => {
+            Ok(Encoded::alone(csv::write(document, &source.clips[0], &whole(clip))))
+        }
+        _ => new_file(clip, format, &stem, target),
+    }
+}
+
+/// The clip with the rest pose said for every joint: formats with a column for each would keep other numbers there.
+fn whole(clip: &Clip) -> Clip {
+    let mut all = clip.clone();
+    let once = || Times::Listed([0.0].into());
+    for (tracks, joint) in all.joints.iter_mut().zip(clip.skeleton.joints()) {
+        let own = Arc::make_mut(tracks);
+        own.rotation.get_or_insert_with(|| RotationTrack::from_rotors(once(), [joint.rest.rotation]));
+        own.translation.get_or_insert_with(|| VectorTrack::straight(once(), [joint.rest.translation]));
+    }
+    all
 }
 
 /// The bytes that [`write()`] would write.
@@ -172,19 +233,21 @@ pub fn encode(
     let format = Format::of(target)?;
     let stem = target.file_stem().map(|stem| stem.to_string_lossy().into_owned()).unwrap_or_default();
     let gltf_error = |source| WriteError::Gltf { path: target.to_owned(), source };
+    // A result on another skeleton has no place in the file of its source.
+    let is_own = source.clips.iter().zip(results).all(|(own, result)| own.has_skeleton_of(result));
     match (&source.origin, format) {
-        (Origin::Gltf(document), Format::Gltf | Format::Glb) => {
+        (Origin::Gltf(document), Format::Gltf | Format::Glb) if is_own => {
             let pairs: Vec<(usize, &Clip, &Clip)> =
                 source.clips.iter().zip(results).enumerate().map(|(i, (a, b))| (i, &**a, &**b)).collect();
             let output = gltf::write_as(document, &pairs, &stem, form(format)).map_err(gltf_error)?;
             Ok(Encoded::from(output))
         }
-        (Origin::Bvh(document), Format::Bvh) if has_same_joints(source, &results[0]) => {
+        (Origin::Bvh(document), Format::Bvh) if is_own && has_same_joints(source, &results[0]) => {
             let rows = Rows::of(&results[0], format);
             let encoded = Encoded::alone(bvh::write(document, &source.clips[0], &rows.clip));
             Ok(rows.tell(encoded))
         }
-        (Origin::Csv(document), Format::Csv) if has_same_joints(source, &results[0]) => {
+        (Origin::Csv(document), Format::Csv) if is_own && has_same_joints(source, &results[0]) => {
             let rows = Rows::of(&results[0], format);
             let encoded = Encoded::alone(csv::write(document, &source.clips[0], &rows.clip));
             Ok(rows.tell(encoded))

@@ -17,6 +17,6 @@ mod source;
 mod turns;
 
 pub use address::ClipAddress;
-pub use export::{Encoded, Guard, WriteError, Written, encode, write};
+pub use export::{Encoded, Guard, WriteError, Written, encode, encode_onto, write, write_onto};
 pub use note::Note;
 pub use source::{Format, OpenError, OpenOptions, Source, open, open_bytes};

@@ -242,6 +242,15 @@ impl Source {
         Some(Self { clips: clips.collect(), rest: choice, reading, ..self.clone() })
     }
 
+    /// The skeleton of its first clip; a glTF file has one also without a clip.
+    pub fn skeleton(&self) -> Option<Arc<Skeleton>> {
+        let own = self.clips.first().map(|clip| clip.skeleton.clone());
+        own.or_else(|| match &self.origin {
+            Origin::Gltf(document) => Some(document.skeleton().clone()).filter(|own| !own.is_empty()),
+            Origin::Bvh(_) | Origin::Csv(_) => None,
+        })
+    }
+
     /// What a clip is called in lists: its name, or `#INDEX` where it has none.
     pub fn clip_label(&self, index: usize) -> String {
         match self.clips.get(index).map(|clip| clip.name.as_str()) {

@@ -85,18 +85,39 @@ pub fn plant_feet(
     spans: &[PlantedSpan],
     options: &PlantOptions,
 ) -> (Clip, PlantReport) {
+    plant_feet_at(clip, feet, spans, &[], options)
+}
+
+/// As [`plant_feet`], with the height at which the point of a span is to stand along `options.up`, in the scene: one for each of the first spans,
+/// `None` for the height it has. Of a flat foot that of the ball counts.
+pub fn plant_feet_at(
+    clip: &Clip,
+    feet: &[Foot],
+    spans: &[PlantedSpan],
+    heights: &[Option<f64>],
+    options: &PlantOptions,
+) -> (Clip, PlantReport) {
     let count = clip.grid.count();
-    let spans: Vec<PlantedSpan> = spans
+    let (spans, heights): (Vec<PlantedSpan>, Vec<Option<f64>>) = spans
         .iter()
-        .filter(|span| {
+        .enumerate()
+        .filter(|(_, span)| {
             span.foot < feet.len() && span.first_frame <= span.last_frame && span.first_frame < count
         })
-        .map(|span| PlantedSpan { last_frame: span.last_frame.min(count - 1), ..*span })
-        .collect();
+        .map(|(index, span)| {
+            let span = PlantedSpan { last_frame: span.last_frame.min(count - 1), ..*span };
+            (span, heights.get(index).copied().flatten())
+        })
+        .unzip();
     let mut report = PlantReport { before: slides(clip, feet, &spans, options.up), ..PlantReport::default() };
     let mut result = clip.clone();
     for (index, foot) in feet.iter().enumerate() {
-        let own: Vec<PlantedSpan> = spans.iter().filter(|span| span.foot == index).copied().collect();
+        let own: Vec<(PlantedSpan, Option<f64>)> = spans
+            .iter()
+            .copied()
+            .zip(heights.iter().copied())
+            .filter(|(span, _)| span.foot == index)
+            .collect();
         if !own.is_empty() {
             let shift = Corrections::of(&result, foot, &own, &[], options);
             result = bent(&result, index, foot, &shift, options, &mut report);
@@ -141,7 +162,13 @@ pub(super) fn hold(clip: &Clip, plants: &[Plant]) -> Clip {
             }
         }
         if !spans.is_empty() {
-            let asked = Corrections::of(&result, own, &spans, &still, &options);
+            let asked = Corrections::of(
+                &result,
+                own,
+                &spans.iter().map(|&span| (span, None)).collect::<Vec<_>>(),
+                &still,
+                &options,
+            );
             result = bent(&result, foot, own, &asked, &options, &mut report);
         }
     }
@@ -207,13 +234,19 @@ impl EndTrail {
 
 impl Corrections {
     /// `still`: frames at which nothing is to change.
-    fn of(clip: &Clip, foot: &Foot, spans: &[PlantedSpan], still: &[usize], options: &PlantOptions) -> Self {
+    fn of(
+        clip: &Clip,
+        foot: &Foot,
+        spans: &[(PlantedSpan, Option<f64>)],
+        still: &[usize],
+        options: &PlantOptions,
+    ) -> Self {
         let count = clip.grid.count();
         let trail = EndTrail::of(clip, foot);
         let step_secs = clip.grid.times.median_step().unwrap_or(1.0);
         let reach = ((options.fade_secs / step_secs).round() as usize).max(3);
         let mut down = [vec![false; count], vec![false; count]];
-        for span in spans {
+        for (span, _) in spans {
             down[usize::from(span.part == FootPart::Ball)][span.frames()].fill(true);
         }
         let [heel_down, ball_down] = &down;
@@ -247,7 +280,7 @@ impl Corrections {
                 let own: Vec<DVec3> = (first..=last).filter(|&f| down[f]).map(|f| places[part][f]).collect();
                 median_place(&own, 0..=own.len().saturating_sub(1))
             };
-            let targets = match flat {
+            let mut targets = match flat {
                 // A foot that is flat for a while is one body: the heel stands where the ball and the heading put it.
                 Some((turn, flat)) => {
                     let is_flat: Vec<bool> = (0..count).map(|f| heel_down[f] && ball_down[f]).collect();
@@ -258,6 +291,21 @@ impl Corrections {
                 }
                 None => [median(0, heel_down), median(1, ball_down)],
             };
+            // Onto the ground, where it is told how high that is.
+            let lift = |part: FootPart, place: DVec3| {
+                let own = spans.iter().find(|(span, _)| {
+                    span.part == part && span.first_frame <= last && span.last_frame >= first
+                });
+                own.and_then(|(_, height)| *height)
+                    .map(|height| options.up * (height - place.dot(options.up)))
+            };
+            let lifts = [lift(FootPart::Heel, targets[0]), lift(FootPart::Ball, targets[1])];
+            if flat.is_some() {
+                let both = lifts[1].or(lifts[0]).unwrap_or_default();
+                targets = targets.map(|target| target + both);
+            } else {
+                targets = [0, 1].map(|part| targets[part] + lifts[part].unwrap_or_default());
+            }
             for frame in first..=last {
                 let turn = Rotor::from_plane_angles(turns[frame]) * trail.turns[frame];
                 let end_for = |part: usize| {

@@ -14,5 +14,6 @@ pub use history::{History, Revision, Step};
 pub use library::{Library, Loaded};
 pub use pass::{
     BlendForm, BlendPass, ClipRef, KeysPass, LimitsPass, MendPass, Need, NoOthers, Others, Outcome, Pass,
-    PassError, PassId, PassKind, PassStep, PushPass, ReducePass, ResamplePass, Scope, SmoothPass, SnagMark,
+    PassError, PassId, PassKind, PassStep, PushPass, ReducePass, ResamplePass, RetargetPass, Scope,
+    SmoothPass, SnagMark,
 };

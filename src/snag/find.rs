@@ -3,8 +3,8 @@
 use crate::clip::Clip;
 
 use super::{
-    Memory, Snag, SnagKind, broken_value, half_turn, jitter, long_way, mirrored_angles, seam, sign_flip, slide,
-    spike, stuck, wrap,
+    Memory, Snag, SnagKind, broken_value, half_turn, jitter, long_way, mirrored_angles, seam, sign_flip,
+    slide, spike, stuck, wrap,
 };
 
 /// Finds the snags of one kind in one joint of `clip` as it is, in the order of their keys.

@@ -691,3 +691,59 @@ fn the_window_is_drawn_without_a_display() {
     let colors: BTreeSet<&[u8]> = pixels[..frame.buffer_size()].chunks(3).collect();
     assert!(colors.len() > 500, "{} colours", colors.len());
 }
+
+#[test]
+fn a_clip_is_carried_into_the_file_of_another_figure() {
+    let (Some(walk), Some(figure)) =
+        (shared("data/bvh/walk01.bvh"), shared("data/gltf/biped23_movement_clips.glb"))
+    else {
+        return;
+    };
+    let bench = Bench::new();
+    let (walk, figure) = (walk.display().to_string(), figure.display().to_string());
+    let first = format!(
+        "retarget {walk} --onto {figure} -o out.glb --plant-feet --save-map map.csv --proof sheet.json"
+    );
+    let run = bench.run(&first).expect(0);
+    assert!(run.stdout.is_empty() && run.stderr.contains("spans with a planted foot"), "{}", run.stderr);
+
+    // One animation more; meshes, skins, nodes and the other animations stay to the letter.
+    let json = |bytes: &[u8]| -> Value {
+        let length = u32::from_le_bytes(bytes[12..16].try_into().unwrap()) as usize;
+        serde_json::from_slice(&bytes[20..20 + length]).unwrap()
+    };
+    let (before, after) = (json(&disk::read(Path::new(&figure)).unwrap()), json(&bench.read("out.glb")));
+    for member in ["meshes", "skins", "nodes", "scenes", "materials"] {
+        assert_eq!(before.get(member), after.get(member), "{member}");
+    }
+    let animations = |value: &Value| value["animations"].as_array().unwrap().clone();
+    let (old, new) = (animations(&before), animations(&after));
+    assert_eq!(new[..old.len()], old[..]);
+    assert_eq!((new.len(), new[old.len()]["name"].as_str()), (old.len() + 1, Some("walk01")));
+
+    let sheet: Value = serde_json::from_slice(&bench.read("sheet.json")).unwrap();
+    assert!(sheet["max_direction_error_before_holding_deg"].as_f64().unwrap() < 1e-3, "{sheet}");
+    assert!(
+        sheet["slide_after"].as_f64().unwrap() < 0.3 * sheet["slide_before"].as_f64().unwrap(),
+        "{sheet}"
+    );
+
+    // The map that was written gives the same again; one that keeps a joint at rest does not.
+    let again = format!("retarget {walk} --onto {figure} -o again.glb --plant-feet --map map.csv");
+    bench.run(&again).expect(0);
+    assert_eq!(bench.read("out.glb"), bench.read("again.glb"));
+    bench.write("rest.csv", b"source,target\n,head\n");
+    bench.run(&format!("retarget {walk} --onto {figure} -o rest.glb --map rest.csv")).expect(0);
+    bench.write("wrong.csv", b"source,target\nNose,head\n");
+    let wrong = bench.run(&format!("retarget {walk} --onto {figure} -o wrong.glb --map wrong.csv")).expect(2);
+    assert!(
+        wrong.stderr.contains("wrong.csv: line 2: expected a joint of the source, found `Nose`"),
+        "{}",
+        wrong.stderr
+    );
+
+    // And into the hierarchy of a BVH: its head stays.
+    bench.run(&format!("retarget {figure}#1 --onto {walk} -o back.bvh")).expect(0);
+    let head = |bytes: &[u8]| String::from_utf8_lossy(bytes).split("MOTION").next().unwrap().to_owned();
+    assert_eq!(head(&disk::read(Path::new(&walk)).unwrap()), head(&bench.read("back.bvh")));
+}

@@ -6,9 +6,9 @@ use std::path::{Path, PathBuf};
 use turnwright::exchange::disk;
 
 /// Lowest first.
-const LAYERS: [&str; 14] = [
-    "rotor", "skeleton", "clip", "limit", "snag", "mend", "blend", "scene", "exchange", "raster", "proof",
-    "demo", "cli", "app",
+const LAYERS: [&str; 15] = [
+    "rotor", "skeleton", "clip", "limit", "snag", "mend", "blend", "retarget", "scene", "exchange", "raster",
+    "proof", "demo", "cli", "app",
 ];
 
 fn each_source_line(folder: &Path, seen: &mut dyn FnMut(&str, &str)) -> usize {

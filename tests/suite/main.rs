@@ -31,6 +31,7 @@
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
 //! | `gui_window` | the whole window, driven by accessible labels; what is asserted is the document |
 //! | `raster` | small pictures of one subject each |
+//! | `retarget` | clips carried to another skeleton: worked examples, identities, what must not matter, captures on figures |
 //! | `roles` | which joint plays which part: families of names, hard cases, the outside files |
 //! | `reduce` | key reduction on real clips: the bound checked by other means, the count against the fewest there could be |
 //! | `rest_pose` | which pose turns are measured from: the candidates, the rule, what follows from it |
@@ -78,6 +79,7 @@ mod proof;
 mod raster;
 mod reduce;
 mod rest_pose;
+mod retarget;
 mod roles;
 mod rotor_checks;
 mod rotor_methods;

@@ -21,7 +21,13 @@ pub(crate) struct Build {
 }
 
 impl Build {
-    fn add(&mut self, name: &str, parent: Option<usize>, place: [f64; 3], role: Option<Role>) -> usize {
+    pub(crate) fn add(
+        &mut self,
+        name: &str,
+        parent: Option<usize>,
+        place: [f64; 3],
+        role: Option<Role>,
+    ) -> usize {
         self.names.push(name.to_owned());
         self.parents.push(parent);
         self.places.push(DVec3::from_array(place));
@@ -30,7 +36,7 @@ impl Build {
         self.names.len() - 1
     }
 
-    fn at(&self, role: Role) -> usize {
+    pub(crate) fn at(&self, role: Role) -> usize {
         self.roles.iter().position(|own| *own == Some(role)).expect("the figure has it")
     }
 
@@ -68,14 +74,14 @@ impl Build {
         self.skeleton_with(|_| Rotor::IDENTITY)
     }
 
-    fn map_places(mut self, map: impl Fn(DVec3) -> DVec3) -> Self {
+    pub(crate) fn map_places(mut self, map: impl Fn(DVec3) -> DVec3) -> Self {
         for place in self.places.iter_mut().chain(self.tips.iter_mut().flatten()) {
             *place = map(*place);
         }
         self
     }
 
-    fn rename(mut self, name: impl Fn(usize, &str) -> String) -> Self {
+    pub(crate) fn rename(mut self, name: impl Fn(usize, &str) -> String) -> Self {
         for (index, own) in self.names.iter_mut().enumerate() {
             *own = name(index, own);
         }
@@ -109,7 +115,7 @@ impl Build {
 }
 
 /// Names of the trunk and of one limb's parts; `{}` takes the side.
-struct Names {
+pub(crate) struct Names {
     hips: &'static str,
     trunk: &'static [&'static str],
     neck: &'static [&'static str],
@@ -119,7 +125,7 @@ struct Names {
     sides: [&'static str; 2],
 }
 
-const A: Names = Names {
+pub(crate) const A: Names = Names {
     hips: "Hips",
     trunk: &["Spine", "Spine1", "Spine2"],
     neck: &["Neck"],
@@ -128,7 +134,7 @@ const A: Names = Names {
     leg: ["{}UpLeg", "{}Leg", "{}Foot", "{}ToeBase"],
     sides: ["Left", "Right"],
 };
-const B: Names = Names {
+pub(crate) const B: Names = Names {
     hips: "root",
     trunk: &["lowerback", "upperback", "thorax"],
     neck: &["lowerneck", "upperneck"],
@@ -137,7 +143,7 @@ const B: Names = Names {
     leg: ["{}femur", "{}tibia", "{}foot", "{}toes"],
     sides: ["l", "r"],
 };
-const C: Names = Names {
+pub(crate) const C: Names = Names {
     hips: "pelvis",
     trunk: &["spine1", "spine2", "spine3"],
     neck: &["neck"],
@@ -146,7 +152,7 @@ const C: Names = Names {
     leg: ["{}_hip", "{}_knee", "{}_ankle", "{}_foot"],
     sides: ["left", "right"],
 };
-const D: Names = Names {
+pub(crate) const D: Names = Names {
     hips: "Hips",
     trunk: &["Spine", "Chest", "UpperChest"],
     neck: &["Neck"],
@@ -157,7 +163,7 @@ const D: Names = Names {
 };
 
 /// A person of 1.8 m in a T-pose with the names given.
-fn person(names: &Names) -> Build {
+pub(crate) fn person(names: &Names) -> Build {
     let mut build = Build::default();
     let trunk_roles = [Role::Spine, Role::Chest, Role::UpperChest];
     let hips = build.add(names.hips, None, [0.0, 1.0, 0.0], Some(Role::Hips));

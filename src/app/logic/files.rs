@@ -346,8 +346,9 @@ fn open_scene(path: PathBuf) -> Result<OpenedScene, String> {
         });
     }
     let mut lost = Vec::new();
-    let loaded =
-        sources.iter().map(|state| state.source().map(|source| Loaded::of_clips(source.clips.clone())));
+    let loaded = sources.iter().map(|state| {
+        state.source().map(|source| Loaded { clips: source.clips.clone(), skeleton: source.skeleton() })
+    });
     let library = Library::new(Arc::new(scene.document.clone()), loaded.collect());
     for work in 0..scene.document.works.len() {
         let own = &scene.document.works[work];

@@ -6,5 +6,6 @@ pub(super) mod demo;
 pub(super) mod mend;
 pub(super) mod picture;
 pub(super) mod proof;
+pub(super) mod retarget;
 pub(super) mod sample;
 pub(super) mod snags;

@@ -36,4 +36,4 @@ pub use document::{Document, Form};
 pub use error::{GltfError, GltfErrorKind};
 pub use new_file::from_clip;
 pub use read::read;
-pub use write::{Output, write, write_as};
+pub use write::{Output, write, write_added, write_as};

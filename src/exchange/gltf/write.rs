@@ -65,6 +65,22 @@ pub fn write_as(
     writer.finish(stem, form)
 }
 
+/// The document with one more animation, named `name`, that plays the tracks of `clip`. All else stays as [`write()`] leaves it.
+///
+/// # Errors
+/// When the clip does not belong to the document's skeleton, or the result is beyond what a GLB can hold.
+pub fn write_added(
+    document: &Document,
+    clip: &Clip,
+    name: &str,
+    stem: &str,
+    form: Form,
+) -> Result<Output, GltfError> {
+    let mut writer = Writer::new(document);
+    writer.add(clip, name)?;
+    writer.finish(stem, form)
+}
+
 /// A track that changed.
 struct Change {
     /// Its channel and sampler; `None` where there was no track before.
@@ -157,6 +173,44 @@ impl<'a> Writer<'a> {
             }
         }
         self.apply(index, changes);
+        Ok(())
+    }
+
+    /// Adds an animation.
+    fn add(&mut self, clip: &Clip, name: &str) -> Result<(), GltfError> {
+        let n_joints = self.document.skeleton.len();
+        if clip.joints.len() != n_joints {
+            let found = format!("{} in the clip", clip.joints.len());
+            return Err(GltfError::unlike("nodes", format!("{n_joints} joints"), found));
+        }
+        let place = self.document.animations.len();
+        let mut samplers = Vec::new();
+        let mut channels = Vec::new();
+        for (joint, tracks) in clip.joints.iter().enumerate() {
+            let mut is_cleared = false;
+            for part in [Part::Translation, Part::Rotation, Part::Scale] {
+                let Some(mut curve) = curve_of(tracks, part).filter(|curve| !curve.secs.is_empty()) else {
+                    continue;
+                };
+                curve.unroll(None);
+                if !std::mem::replace(&mut is_cleared, true) {
+                    self.clear_matrix(joint);
+                }
+                let change = Change { binding: None, joint, part, curve, keeps_times: false };
+                self.note_remarks(place, &change);
+                samplers.push(self.sampler(json!({}), &change));
+                let node = self.document.skeleton.joints()[joint].number;
+                channels.push(json!({
+                    "sampler": samplers.len() - 1,
+                    "target": { "node": node, "path": part.path() },
+                }));
+            }
+        }
+        // An animation has at least one of each (section 3.11).
+        if !channels.is_empty() {
+            let animation = json!({ "name": name, "samplers": samplers, "channels": channels });
+            self.patch.extend(&self.patch.root(), "animations", &[animation.to_string()]);
+        }
         Ok(())
     }
 

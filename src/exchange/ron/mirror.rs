@@ -101,6 +101,13 @@ pub(super) enum Step {
         #[serde(default, skip_serializing_if = "Vec::is_empty")]
         masks: Vec<Scope>,
     },
+    Retarget {
+        /// Index of the source whose skeleton is meant.
+        onto: usize,
+        #[serde(default, skip_serializing_if = "Vec::is_empty")]
+        rows: Vec<(Option<String>, Option<String>)>,
+        plant_feet: bool,
+    },
     Push {
         pushes: Vec<Push>,
     },

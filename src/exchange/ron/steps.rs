@@ -4,8 +4,8 @@ use crate::blend::{JoinPlace, MixAlong, Reference, RootFrom, Side};
 use crate::clip::{Foot, JointPoint, Kernel, KeyEdit, Push, PushFrame, Smoothing};
 use crate::rotor::{Bivector, Rotor};
 use crate::scene::{
-    BlendForm, BlendPass, ClipRef, KeysPass, MendPass, PassStep, PushPass, ReducePass, ResamplePass, Scope,
-    SmoothPass,
+    BlendForm, BlendPass, ClipRef, KeysPass, MendPass, PassStep, PushPass, ReducePass, ResamplePass,
+    RetargetPass, Scope, SmoothPass,
 };
 use crate::skeleton::TwoJointLimb;
 use crate::snag::{LoopClose, LoopForm, Plant, Remedy, Snag, SnagKind};
@@ -26,6 +26,7 @@ pub(super) fn step_from(step: mirror::Step) -> Result<PassStep, String> {
         }
         mirror::Step::Resample { rate } => ResamplePass { rate }.into(),
         mirror::Step::Blend(blend) => blend_from(blend).into(),
+        mirror::Step::Retarget { onto, rows, plant_feet } => RetargetPass { onto, rows, plant_feet }.into(),
         mirror::Step::Smooth { scope, kernel, cutoff_hz, most_deg, amount, with_places, masks } => {
             amount_in_range(amount)?;
             let kernel = Kernel::named(&kernel)
@@ -68,6 +69,9 @@ pub(super) fn step_to(step: &PassStep, label: &dyn Fn(usize) -> String) -> mirro
         },
         PassStep::Resample(pass) => mirror::Step::Resample { rate: pass.rate },
         PassStep::Blend(pass) => mirror::Step::Blend(blend_to(pass)),
+        PassStep::Retarget(pass) => {
+            mirror::Step::Retarget { onto: pass.onto, rows: pass.rows.clone(), plant_feet: pass.plant_feet }
+        }
         PassStep::Smooth(pass) => mirror::Step::Smooth {
             scope: scope_to(&pass.scope),
             kernel: pass.smoothing.kernel.name().to_owned(),

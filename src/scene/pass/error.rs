@@ -2,6 +2,7 @@
 
 use crate::blend::BlendError;
 use crate::mend::MendError;
+use crate::retarget::RetargetError;
 
 /// A pass that does not fit the clip it is to change. It is left out then.
 #[derive(Clone, Debug, PartialEq, thiserror::Error)]
@@ -30,6 +31,9 @@ pub enum PassError {
         /// Number of the clip in the file, from 1.
         clip: usize,
     },
+    /// A clip that can't be carried over.
+    #[error(transparent)]
+    Retarget(#[from] RetargetError),
     /// A skeleton that is not open.
     #[error("expected the skeleton of file {file} (from 1), found that file not open or without joints")]
     NoSuchSkeleton {

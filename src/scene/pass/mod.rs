@@ -10,6 +10,7 @@ mod others;
 mod push;
 mod reduce;
 mod resample;
+mod retarget;
 mod scope;
 mod smooth;
 
@@ -23,6 +24,7 @@ pub use others::{ClipRef, Need, NoOthers, Others};
 pub use push::PushPass;
 pub use reduce::ReducePass;
 pub use resample::ResamplePass;
+pub use retarget::RetargetPass;
 pub use scope::Scope;
 pub use smooth::SmoothPass;
 
@@ -81,6 +83,8 @@ steps! {
     Resample(ResamplePass),
     /// Another clip blended in.
     Blend(BlendPass),
+    /// Another skeleton.
+    Retarget(RetargetPass),
     /// Fewer keys.
     Reduce(ReducePass),
     /// Smoothing.

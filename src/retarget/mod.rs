@@ -1,0 +1,27 @@
+//! Carrying a clip to another skeleton.
+//!
+//! A [`Figure`] is a skeleton in the pose that counts as its rest. A [`JointMap`] says which joint of the source drives which
+//! joint of the target. [`retarget`] carries the clip over: world turns away from rest, rest poses compared by where limbs
+//! point and bend, chains of unequal length spread along their length, the path scaled by the legs, and feet held where the
+//! source's stand.
+
+mod alignment;
+mod chain;
+mod figure;
+mod fingerprint;
+mod joint_map;
+mod map_file;
+mod measure;
+mod plan;
+mod report;
+mod smooth;
+mod stand;
+mod transfer;
+
+pub use chain::spread;
+pub use figure::Figure;
+pub use fingerprint::fingerprint;
+pub use joint_map::{JointMap, Link, LinkKind};
+pub use map_file::{MapError, MapRow, read_map, write_map};
+pub use report::{DirectionError, LargestCorrection, Missed, Report};
+pub use transfer::{Options, RetargetError, Retargeted, retarget};
