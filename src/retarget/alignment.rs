@@ -14,8 +14,8 @@ const ALIKE_DEG: f64 = 25.0;
 /// Parts of the trunk and collar bones point where their neighbours happen to stand: only beyond this is the rest another pose.
 const TRUNK_DEG: f64 = 32.0;
 
-/// A foot slopes as its ankle is high; only beyond this is it another pose.
-const SLOPE_DEG: f64 = 40.0;
+/// A shin at rest within this of straight down carries a foot that stands.
+const STANDING_DEG: f64 = 40.0;
 
 /// The turn in the scene that brings the rest of a target joint to where the source's rest is. `turned` takes directions of the source's
 /// scene to the target's.
@@ -40,11 +40,25 @@ pub(super) fn alignment(source: &Figure, target: &Figure, [from, to]: [usize; 2]
         Manner::Foot => {
             let flat = |v: DVec3| v - t.up * v.dot(t.up);
             let [a, b] = [flat(wanted), flat(own)];
-            let slope = |v: DVec3| v.dot(t.up).clamp(-1.0, 1.0).asin().to_degrees();
-            let is_alike = (slope(wanted) - slope(own)).abs() < SLOPE_DEG;
-            if is_alike && a.length() > 0.3 && b.length() > 0.3 { Rotor::between(b, a) } else { whole() }
+            // Below a shin that stands, a foot stands flat, however high its ankle is: only its heading counts.
+            if !(stands(source, from) && stands(target, to)) {
+                whole()
+            } else if a.length() > 0.2 && b.length() > 0.2 {
+                Rotor::between(b, a)
+            } else {
+                Rotor::IDENTITY
+            }
         }
     }
+}
+
+/// Whether the shin above a foot points down at rest.
+fn stands(figure: &Figure, foot: usize) -> bool {
+    let side = figure.roles.joints[foot].side;
+    let shin = side.and_then(|side| figure.roles.joint(Role::LowerLeg(side)));
+    let shape = &figure.roles.shape;
+    let direction = shin.and_then(|shin| shape.limb_direction(shin));
+    direction.is_some_and(|shin| shin.angle_between(-shape.up).to_degrees() < STANDING_DEG)
 }
 
 enum Manner {

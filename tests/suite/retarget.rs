@@ -388,7 +388,7 @@ fn captures_on_figures_they_were_not_made_for() {
                 })
                 .fold((f64::MAX, f64::MIN), |(low, high), at| (low.min(at), high.max(at)));
             assert!(
-                low.0 > -0.15 * leg && low.1 < 0.3 * leg,
+                low.0 > -0.2 * leg && low.1 < 0.3 * leg,
                 "{capture} on {figure}: ankles {low:?} for a leg of {leg}"
             );
         }
