@@ -57,6 +57,9 @@ const MOST_GROWTH_IN_FEW: f64 = 1.4;
 /// taken for moving that fast.
 const FINE_SECS: f64 = 0.02;
 
+/// Poses count as evenly spaced when no time between them is off by more than this share.
+const UNEVEN: f64 = 0.2;
+
 /// The fourth difference of white noise of this deviation in each of three axes has a squared length of 3 · 70 times its
 /// square; the middle length of three normal numbers is 1.538 of their deviation.
 const MIDDLE: f64 = 1.538;
@@ -67,14 +70,14 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     let Some(scan) = Scan::new(clip, joint).filter(|scan| scan.track.keys.len() >= LEAST_KEYS) else {
         return Vec::new();
     };
-    let Some(step_secs) = scan.track.times.median_step() else { return Vec::new() };
-    let poses = poses_of(&scan);
+    let Some(row) = Row::new(&scan) else { return Vec::new() };
+    let step_secs = row.step_secs;
     for lag in LAGS {
         if lag > 1 && lag as f64 * step_secs > FARTHEST_SECS {
             break;
         }
-        let Some(levels) = Levels::new(&poses, step_secs, lag) else { break };
-        let spans = spans(&scan, &poses, &levels, step_secs);
+        let Some(levels) = Levels::new(&row, lag) else { break };
+        let spans = spans(&scan, &row, &levels);
         if !spans.is_empty() {
             return spans.into_iter().map(|span| snag(&scan, &levels, span)).collect();
         }
@@ -82,7 +85,40 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     Vec::new()
 }
 
-/// Unit poses of neighbouring signs; where the file has none, the one before.
+/// A joint's poses and their times.
+struct Row {
+    /// Unit, of neighbouring signs; where the file has none, the one before.
+    poses: Vec<Rotor>,
+    secs: Vec<f64>,
+    /// The usual time from key to key.
+    step_secs: f64,
+}
+
+impl Row {
+    fn new(scan: &Scan<'_>) -> Option<Self> {
+        let step_secs = scan.track.times.median_step()?;
+        Some(Self { poses: poses_of(scan), secs: scan.track.times.iter().collect(), step_secs })
+    }
+
+    fn len(&self) -> usize {
+        self.poses.len()
+    }
+
+    /// The noise, in radians per axis, that the fourth difference at a key stands for; 0 where its five poses are not
+    /// evenly spaced, and where they reach beyond the ends.
+    fn noise(&self, key: usize, lag: usize) -> f64 {
+        if key < 2 * lag || key + 2 * lag >= self.len() {
+            return 0.0;
+        }
+        let wide = lag as f64 * self.step_secs;
+        let is_even = [0, 1, 2, 3].iter().all(|i| {
+            let from = key + i * lag - 2 * lag;
+            (self.secs[from + lag] - self.secs[from] - wide).abs() <= UNEVEN * wide
+        });
+        if is_even { fourth_difference(&self.poses, key, lag) } else { 0.0 }
+    }
+}
+
 fn poses_of(scan: &Scan<'_>) -> Vec<Rotor> {
     let mut before = scan.track.sound_key(0);
     (0..scan.track.keys.len())
@@ -105,22 +141,22 @@ struct Levels {
 }
 
 impl Levels {
-    fn new(poses: &[Rotor], step_secs: f64, lag: usize) -> Option<Self> {
-        if poses.len() < 8 * lag + WINDOW_KEYS {
+    fn new(row: &Row, lag: usize) -> Option<Self> {
+        if row.len() < 8 * lag + WINDOW_KEYS {
             return None;
         }
-        let each = fourth_differences(poses, lag);
-        let width = ((WINDOW_SECS / step_secs) as usize).max(WINDOW_KEYS);
+        let each: Vec<f64> = (0..row.len()).map(|key| row.noise(key, lag)).collect();
+        let width = ((WINDOW_SECS / row.step_secs) as usize).max(WINDOW_KEYS);
         let hop = width.div_ceil(2);
-        let (low, high) = (2 * lag, poses.len() - 2 * lag);
+        let (low, high) = (2 * lag, row.len() - 2 * lag);
         let mut windows = Vec::new();
         let mut start = 0;
-        while start < poses.len() {
+        while start < row.len() {
             let near = start.max(low).min(high - width.min(high - low))..(start + width).clamp(low, high);
             let level = middle(&each[near.clone()]);
             // Growth matters only where there is something to see.
             let growth =
-                if level >= LEAST_RAD { middle(&twice(poses, lag, near)) / level } else { f64::INFINITY };
+                if level >= LEAST_RAD { middle(&twice(row, lag, near)) / level } else { f64::INFINITY };
             windows.push((level, growth));
             start += hop;
         }
@@ -144,13 +180,6 @@ impl Levels {
     }
 }
 
-/// The noise, in radians per axis, that the fourth difference at each key stands for.
-fn fourth_differences(poses: &[Rotor], lag: usize) -> Vec<f64> {
-    let inside = 2 * lag..poses.len() - 2 * lag;
-    let level = |key: usize| if inside.contains(&key) { fourth_difference(poses, key, lag) } else { 0.0 };
-    (0..poses.len()).map(level).collect()
-}
-
 fn fourth_difference(poses: &[Rotor], key: usize, lag: usize) -> f64 {
     let [a, b, c, d, e] = [key - 2 * lag, key - lag, key, key + lag, key + 2 * lag].map(|key| poses[key]);
     let part = |a: f64, b: f64, c: f64, d: f64, e: f64| a + e - 4.0 * (b + d) + 6.0 * c;
@@ -165,9 +194,10 @@ fn fourth_difference(poses: &[Rotor], key: usize, lag: usize) -> f64 {
 }
 
 /// The same at twice the distance, for the keys of a window that have such.
-fn twice(poses: &[Rotor], lag: usize, keys: std::ops::Range<usize>) -> Vec<f64> {
-    let inside = keys.start.max(4 * lag)..keys.end.min(poses.len() - 4 * lag);
-    inside.map(|key| fourth_difference(poses, key, 2 * lag)).collect()
+fn twice(row: &Row, lag: usize, keys: std::ops::Range<usize>) -> Vec<f64> {
+    let inside = keys.start.max(4 * lag)..keys.end.min(row.len() - 4 * lag);
+    // What is not evenly spaced tells nothing.
+    inside.map(|key| row.noise(key, 2 * lag)).filter(|noise| *noise > 0.0).collect()
 }
 
 fn middle(values: &[f64]) -> f64 {
@@ -191,7 +221,8 @@ struct Span {
     clarity: f64,
 }
 
-fn spans(scan: &Scan<'_>, poses: &[Rotor], levels: &Levels, step_secs: f64) -> Vec<Span> {
+fn spans(scan: &Scan<'_>, row: &Row, levels: &Levels) -> Vec<Span> {
+    let step_secs = row.step_secs;
     // Most joints have nothing that could be seen.
     if levels.windows.iter().all(|(level, growth)| *level < LEAST_RAD || *growth > MOST_GROWTH_IN_WINDOW) {
         return Vec::new();
@@ -199,7 +230,7 @@ fn spans(scan: &Scan<'_>, poses: &[Rotor], levels: &Levels, step_secs: f64) -> V
     let own_quiet = levels.level_of_share(QUIET_SHARE);
     let mirror = mirror_of(&scan.clip.skeleton, scan.joint)
         .and_then(|other| Scan::new(scan.clip, other))
-        .and_then(|other| Levels::new(&poses_of(&other), other.track.times.median_step()?, levels.lag));
+        .and_then(|other| Levels::new(&Row::new(&other)?, levels.lag));
     let worst_mirrored = mirror.as_ref().map(|mirror| {
         let trembles = |(level, growth): &(f64, f64)| {
             step_secs <= FINE_SECS && *level >= LEAST_RAD && *growth <= MOST_GROWTH
@@ -223,7 +254,7 @@ fn spans(scan: &Scan<'_>, poses: &[Rotor], levels: &Levels, step_secs: f64) -> V
             {
                 index += 1;
             }
-            found.extend(fitted(levels, poses, (start, index - 1), least, own_quiet));
+            found.extend(fitted(levels, row, (start, index - 1), least, own_quiet));
         }
         found.retain(|span| {
             span.last + 1 - span.first >= SHORTEST_KEYS
@@ -288,13 +319,7 @@ fn level_of_all(scan: &Scan<'_>, lag: usize) -> f64 {
 }
 
 /// The keys of a row of windows that tremble, from the first to the last whose difference shows it.
-fn fitted(
-    levels: &Levels,
-    poses: &[Rotor],
-    (start, end): (usize, usize),
-    least: f64,
-    quiet: f64,
-) -> Option<Span> {
+fn fitted(levels: &Levels, row: &Row, (start, end): (usize, usize), least: f64, quiet: f64) -> Option<Span> {
     let count = levels.each.len();
     let (from, to) = (start * levels.hop, ((end + 2) * levels.hop).min(count));
     // Half the middle level is seldom missed by noise and seldom reached without.
@@ -308,7 +333,7 @@ fn fitted(
     let last = if last + 2 * levels.lag + 1 >= count { count - 1 } else { last.saturating_sub(levels.lag) };
     let inside = first.max(2 * levels.lag)..(last + 1).min(count - 2 * levels.lag);
     let noise = middle(levels.each.get(inside.clone())?);
-    let growth = middle(&twice(poses, levels.lag, inside)) / noise;
+    let growth = middle(&twice(row, levels.lag, inside)) / noise;
     let most = if last < first + FEW_KEYS { MOST_GROWTH_IN_FEW } else { MOST_GROWTH };
     let is_noise = first < last && noise >= 0.8 * least && growth <= most;
     is_noise.then_some(Span { first, last, noise, quiet, clarity: noise / least })
