@@ -19,7 +19,7 @@ const LEAST_KEYS: usize = 24;
 
 /// The shortest span told.
 const SHORTEST_SECS: f64 = 0.2;
-const SHORTEST_KEYS: usize = 7;
+const SHORTEST_KEYS: usize = 10;
 
 /// Levels are taken over this long, and at least so many keys.
 const WINDOW_SECS: f64 = 0.2;
@@ -27,6 +27,8 @@ const WINDOW_KEYS: usize = 8;
 
 /// Poses up to so far apart are compared: what trembles slower is motion.
 const FARTHEST_SECS: f64 = 0.034;
+/// With fewer poses a second than this a motion's own bends look like noise.
+const COARSEST_SECS: f64 = 0.05;
 const LAGS: [usize; 3] = [1, 2, 4];
 
 /// Noise below this, per axis, is not seen.
@@ -72,6 +74,9 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     };
     let Some(row) = Row::new(&scan) else { return Vec::new() };
     let step_secs = row.step_secs;
+    if step_secs > COARSEST_SECS {
+        return Vec::new();
+    }
     for lag in LAGS {
         if lag > 1 && lag as f64 * step_secs > FARTHEST_SECS {
             break;

@@ -456,8 +456,10 @@ fn least_recall(kind: SnagKind, coarse: bool) -> f64 {
         SnagKind::Spike if coarse => 0.78,
         SnagKind::HalfTurn | SnagKind::Spike => 0.95,
         SnagKind::Stuck if coarse => 0.87,
-        SnagKind::Jitter if coarse => 0.65,
-        SnagKind::Stuck | SnagKind::Jitter => 0.9,
+        SnagKind::Jitter if coarse => 0.35,
+        SnagKind::Stuck => 0.9,
+        // In clips of 24 or 30 frames a second noise of less than ten frames is not told from motion.
+        SnagKind::Jitter => 0.7,
         _ => 0.98,
     }
 }
