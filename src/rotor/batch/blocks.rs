@@ -3,9 +3,12 @@
 use super::real::Real;
 use super::streams::{Parts, PartsMut};
 
-/// Rows that are computed before they are written. Long enough for the compiler to make a loop of wide instructions, short
-/// enough to stay in the first cache.
-const BLOCK: usize = 64;
+/// Rows that are computed together where a kernel says no other number: enough for the compiler to make a loop of wide
+/// instructions, few enough to stay in the first cache.
+pub(super) const BLOCK: usize = 64;
+
+/// A number for each row of a block.
+pub(super) type Column<F, const ROWS: usize> = [F; ROWS];
 
 /// Computes `lane` for every row: `I` numbers in, `O` numbers out.
 ///
@@ -17,12 +20,18 @@ pub(super) fn each_row<F: Real, const I: usize, const O: usize>(
     outputs: PartsMut<'_, F, O>,
     lane: impl Fn([F; I]) -> [F; O],
 ) {
-    run::<F, I, O, false>(
+    each_block(
         inputs,
         outputs,
         #[inline(always)]
-        |row| (lane(row), F::ZERO),
-        &lane,
+        |block: [&Column<F, BLOCK>; I], found: [&mut Column<F, BLOCK>; O]| {
+            for row in 0..BLOCK {
+                let results = lane(std::array::from_fn(|part| block[part][row]));
+                for part in 0..O {
+                    found[part][row] = results[part];
+                }
+            }
+        },
     );
 }
 
@@ -35,58 +44,34 @@ pub(super) fn each_row_guarded<F: Real, const I: usize, const O: usize>(
     lane: impl Fn([F; I]) -> ([F; O], F),
     exact: impl Fn([F; I]) -> [F; O],
 ) {
-    run::<F, I, O, true>(inputs, outputs, lane, exact);
+    each_block(
+        inputs,
+        outputs,
+        #[inline(always)]
+        |block: [&Column<F, BLOCK>; I], found: [&mut Column<F, BLOCK>; O]| {
+            let mut guards = [F::ZERO; BLOCK];
+            for row in 0..BLOCK {
+                let (results, guard) = lane(std::array::from_fn(|part| block[part][row]));
+                for part in 0..O {
+                    found[part][row] = results[part];
+                }
+                guards[row] = guard;
+            }
+            mend_rare(&guards, block, found, &exact);
+        },
+    );
 }
 
+/// Computes by `exact` the rows whose guard is below 0 or no number.
 #[inline(always)]
-fn run<F: Real, const I: usize, const O: usize, const GUARDED: bool>(
-    inputs: Parts<'_, F, I>,
-    mut outputs: PartsMut<'_, F, O>,
-    lane: impl Fn([F; I]) -> ([F; O], F),
-    exact: impl Fn([F; I]) -> [F; O],
-) {
-    let len = common_len(&inputs, &outputs);
-    let whole = len - len % BLOCK;
-    for start in (0..whole).step_by(BLOCK) {
-        let block: [&[F; BLOCK]; I] = std::array::from_fn(|part| block_at(inputs[part], start));
-        let found = block_of::<F, I, O, GUARDED>(block, &lane, &exact);
-        for (output, found) in outputs.iter_mut().zip(&found) {
-            output[start..start + BLOCK].copy_from_slice(found);
-        }
-    }
-    let rest = len - whole;
-    if rest > 0 {
-        // Filled up with the last row, which is a sound argument where zeros might be none.
-        let block: [[F; BLOCK]; I] =
-            std::array::from_fn(|part| std::array::from_fn(|row| inputs[part][whole + row.min(rest - 1)]));
-        let found = block_of::<F, I, O, GUARDED>(block.each_ref(), &lane, &exact);
-        for (output, found) in outputs.iter_mut().zip(&found) {
-            output[whole..].copy_from_slice(&found[..rest]);
-        }
-    }
-}
-
-/// One block, into arrays of its own: the compiler sees that nothing else points there, and so needs no tests whether streams
-/// overlap, which for so many streams it would refuse to make.
-#[inline(always)]
-fn block_of<F: Real, const I: usize, const O: usize, const GUARDED: bool>(
-    block: [&[F; BLOCK]; I],
-    lane: &impl Fn([F; I]) -> ([F; O], F),
+pub(super) fn mend_rare<F: Real, const I: usize, const O: usize, const ROWS: usize>(
+    guards: &Column<F, ROWS>,
+    block: [&Column<F, ROWS>; I],
+    found: [&mut Column<F, ROWS>; O],
     exact: &impl Fn([F; I]) -> [F; O],
-) -> [[F; BLOCK]; O] {
-    let mut found = [[F::ZERO; BLOCK]; O];
-    let mut guards = [F::ZERO; BLOCK];
-    for row in 0..BLOCK {
-        let (results, guard) = lane(std::array::from_fn(|part| block[part][row]));
-        for part in 0..O {
-            found[part][row] = results[part];
-        }
-        if GUARDED {
-            guards[row] = guard;
-        }
-    }
-    if GUARDED && guards.iter().fold(false, |any, guard| any | is_rare(*guard)) {
-        for row in 0..BLOCK {
+) {
+    if guards.iter().fold(false, |any, guard| any | is_rare(*guard)) {
+        for row in 0..ROWS {
             if is_rare(guards[row]) {
                 let results = exact(std::array::from_fn(|part| block[part][row]));
                 for part in 0..O {
@@ -95,7 +80,39 @@ fn block_of<F: Real, const I: usize, const O: usize, const GUARDED: bool>(
             }
         }
     }
-    found
+}
+
+/// Computes `kernel` block by block. It gets `I` columns in, and fills `O` columns.
+///
+/// # Panics
+/// When the streams differ in length.
+#[inline(always)]
+pub(super) fn each_block<F: Real, const I: usize, const O: usize, const ROWS: usize>(
+    inputs: Parts<'_, F, I>,
+    mut outputs: PartsMut<'_, F, O>,
+    mut kernel: impl FnMut([&Column<F, ROWS>; I], [&mut Column<F, ROWS>; O]),
+) {
+    let len = common_len(&inputs, &outputs);
+    let mut found = [[F::ZERO; ROWS]; O];
+    let whole = len - len % ROWS;
+    for start in (0..whole).step_by(ROWS) {
+        let block: [&Column<F, ROWS>; I] = std::array::from_fn(|part| block_at(inputs[part], start));
+        let direct: [&mut Column<F, ROWS>; O] = outputs.each_mut().map(|output| output[start..].first_chunk_mut().expect("whole"));
+        kernel(block, direct);
+    }
+    let rest = len - whole;
+    if rest > 0 {
+        // Filled up with the last row, which is a sound argument where zeros might be none.
+        let mut block = [[F::ZERO; ROWS]; I];
+        for (column, stream) in block.iter_mut().zip(inputs) {
+            column[..rest].copy_from_slice(&stream[whole..]);
+            column[rest..].fill(stream[len - 1]);
+        }
+        kernel(block.each_ref(), found.each_mut());
+        for (output, found) in outputs.iter_mut().zip(&found) {
+            output[whole..].copy_from_slice(&found[..rest]);
+        }
+    }
 }
 
 /// Below 0 or no number.
@@ -106,7 +123,7 @@ fn is_rare<F: Real>(guard: F) -> bool {
 }
 
 #[inline(always)]
-fn block_at<F>(stream: &[F], start: usize) -> &[F; BLOCK] {
+fn block_at<F, const ROWS: usize>(stream: &[F], start: usize) -> &Column<F, ROWS> {
     stream[start..].first_chunk().expect("whole blocks lie within the stream")
 }
 

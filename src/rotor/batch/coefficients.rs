@@ -1,80 +1,7 @@
 //! Polynomials of the bulk kernels. Made by `fit_coefficients.py` beside this file; not to be edited by hand.
 #![expect(clippy::unreadable_literal, reason = "nobody reads them, and a script writes them")]
 
-/// `θ²/u` of `u = 1 − cos θ`, 0 ≤ u ≤ 1: factors of rising powers.
-pub(super) const SQUARE_OVER_REST_F64: [f64; 19] = [
-    2.0,
-    0.33333333333333315,
-    0.08888888888902599,
-    0.02857142855672154,
-    0.010158730782041636,
-    0.003847989961757757,
-    0.0015224747924806002,
-    0.0006199304402822266,
-    0.0002703592990845924,
-    6.471266964366254e-05,
-    0.00019959857114825718,
-    -0.00035089074496748995,
-    0.000693830949753249,
-    -0.000937845438039451,
-    0.0009585318455721082,
-    -0.0006967747052493502,
-    0.0003473990179046405,
-    -0.00010601864401750641,
-    1.542069586367028e-05,
-];
-
-/// `θ²/u` of `u = 1 − cos θ`, 0 ≤ u ≤ 1: factors of rising powers.
-pub(super) const SQUARE_OVER_REST_F32: [f32; 9] = [
-    2.0,
-    0.3333333,
-    0.08889261,
-    0.028494634,
-    0.0107521685,
-    0.0016463747,
-    0.0058034044,
-    -0.0036928873,
-    0.0021714373,
-];
-
-/// `θ/sin θ` of `u = 1 − cos θ`, 0 ≤ u ≤ 1: factors of rising powers.
-pub(super) const ANGLE_OVER_SINE_F64: [f64; 21] = [
-    1.0,
-    0.33333333333333326,
-    0.13333333333339686,
-    0.057142857134433386,
-    0.02539682583910687,
-    0.011543999293524815,
-    0.005328212090710707,
-    0.002484086127522605,
-    0.001188276990004753,
-    0.00045003253340025653,
-    0.0007097171701381551,
-    -0.001323564134407126,
-    0.0036827679393165937,
-    -0.006954174264276585,
-    0.010387750690276356,
-    -0.011768365596923158,
-    0.010042210330382292,
-    -0.006232095560132825,
-    0.0026701824735047676,
-    -0.0007079561270706602,
-    8.889719865514448e-05,
-];
-
-/// `θ/sin θ` of `u = 1 − cos θ`, 0 ≤ u ≤ 1: factors of rising powers.
-pub(super) const ANGLE_OVER_SINE_F32: [f32; 10] = [
-    1.0,
-    0.33333337,
-    0.13332844,
-    0.057271484,
-    0.024114087,
-    0.017840976,
-    -0.011612198,
-    0.028214749,
-    -0.019946065,
-    0.008251435,
-];
+use super::real::Quotient;
 
 /// `sin √y / √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
 pub(super) const SINE_OVER_ANGLE_F64: [f64; 9] = [
@@ -90,8 +17,13 @@ pub(super) const SINE_OVER_ANGLE_F64: [f64; 9] = [
 ];
 
 /// `sin √y / √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
-pub(super) const SINE_OVER_ANGLE_F32: [f32; 5] =
-    [1.0, -0.16666666, 0.0083332425, -0.0001982274, 2.6347564e-06];
+pub(super) const SINE_OVER_ANGLE_F32: [f32; 5] = [
+    1.0,
+    -0.16666666,
+    0.0083332425,
+    -0.0001982274,
+    2.6347564e-06,
+];
 
 /// `cos √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
 pub(super) const COSINE_F64: [f64; 9] = [
@@ -107,7 +39,14 @@ pub(super) const COSINE_F64: [f64; 9] = [
 ];
 
 /// `cos √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
-pub(super) const COSINE_F32: [f32; 6] = [1.0, -0.5, 0.04166666, -0.0013888652, 2.477458e-05, -2.6297516e-07];
+pub(super) const COSINE_F32: [f32; 6] = [
+    1.0,
+    -0.5,
+    0.04166666,
+    -0.0013888652,
+    2.477458e-05,
+    -2.6297516e-07,
+];
 
 /// `atan √y / √y`, 0 ≤ y ≤ tan²(π/8): factors of rising powers.
 pub(super) const ARC_TANGENT_F64: [f64; 13] = [
@@ -125,3 +64,75 @@ pub(super) const ARC_TANGENT_F64: [f64; 13] = [
     -0.034570549512274305,
     0.01628574303651472,
 ];
+
+/// `θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
+pub(super) const SQUARE_OVER_REST_F64: Quotient<f64, 7, 6> = Quotient {
+    above: [
+        3782.9580883901413,
+        9170.712128223551,
+        8030.071469148445,
+        3080.109084186303,
+        496.23752657660634,
+        25.82378614251693,
+        0.13387410424044138,
+    ],
+    below: [
+        1533.1751647401782,
+        4135.673714711858,
+        4182.046581251605,
+        1967.8273448914122,
+        433.8853124173312,
+        39.41486037351756,
+    ],
+};
+
+/// `θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
+pub(super) const SQUARE_OVER_REST_F32: Quotient<f32, 4, 3> = Quotient {
+    above: [
+        64.02327,
+        67.84206,
+        15.455492,
+        0.32054812,
+    ],
+    below: [
+        25.947655,
+        34.58527,
+        12.287759,
+    ],
+};
+
+/// `θ/sin θ` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
+pub(super) const ANGLE_OVER_SINE_F64: Quotient<f64, 7, 6> = Quotient {
+    above: [
+        857.6622334406472,
+        2059.215576588245,
+        1778.828411963824,
+        668.4951207547354,
+        104.02309897534343,
+        5.016856209006433,
+        0.014686386697541607,
+    ],
+    below: [
+        546.0047358212563,
+        1658.5347622535253,
+        1915.29099360495,
+        1047.3535539151553,
+        274.4958853407625,
+        30.576053382849427,
+    ],
+};
+
+/// `θ/sin θ` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
+pub(super) const ANGLE_OVER_SINE_F32: Quotient<f32, 4, 3> = Quotient {
+    above: [
+        17.325125,
+        17.854483,
+        3.8039958,
+        0.047282327,
+    ],
+    below: [
+        11.029517,
+        18.38812,
+        8.613247,
+    ],
+};

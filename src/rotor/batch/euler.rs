@@ -3,7 +3,7 @@
 use std::f64::consts::{FRAC_1_PI, FRAC_PI_2, FRAC_PI_4, PI, TAU};
 
 use super::super::EulerOrder;
-use super::blocks::{each_row, each_row_guarded};
+use super::blocks::{Column, each_block, each_row, mend_rare};
 use super::coefficients::ARC_TANGENT_F64;
 use super::level::Level;
 use super::real::{Polynomials, polynomial};
@@ -15,8 +15,6 @@ use super::streams::{Parts, PartsMut};
 /// # Panics
 /// When the streams differ in length.
 pub fn euler_rotors(level: Level, order: EulerOrder, angles: Parts<'_, f64, 3>, out: PartsMut<'_, f64, 4>) {
-    /// Beyond it the multiples of π that are taken off are no longer exact.
-    const MOST: f64 = 1e5;
     let Axes { places, parity, proper } = Axes::of(order);
     let out = by_place(out, places);
     let exact = |angles| {
@@ -27,40 +25,112 @@ pub fn euler_rotors(level: Level, order: EulerOrder, angles: Parts<'_, f64, 3>, 
     level.run(
         #[inline(always)]
         || {
+            let mut desk = Desk::new();
             if proper {
-                each_row_guarded(
+                each_block(
                     angles,
                     out,
                     #[inline(always)]
-                    |angles| (rotor::<true>(angles, parity), MOST - size(angles)),
-                    exact,
+                    |angles, mut out: [&mut Column<f64, ROWS>; 4]| {
+                        rotors::<true>(angles, parity, &mut out, &mut desk);
+                        mend_rare(&desk.guards, angles, out, &exact);
+                    },
                 );
             } else {
-                each_row_guarded(
+                each_block(
                     angles,
                     out,
                     #[inline(always)]
-                    |angles| (rotor::<false>(angles, parity), MOST - size(angles)),
-                    exact,
+                    |angles, mut out: [&mut Column<f64, ROWS>; 4]| {
+                        rotors::<false>(angles, parity, &mut out, &mut desk);
+                        mend_rare(&desk.guards, angles, out, &exact);
+                    },
                 );
             }
         },
     );
 }
 
+const ROWS: usize = 64;
+
+/// Where the stages of a block lie.
+struct Desk {
+    guards: Column<f64, ROWS>,
+    /// Half the angle without whole half turns.
+    rests: Column<f64, ROWS>,
+    /// Its square.
+    squares: Column<f64, ROWS>,
+    /// The sign of all three together: taking off an odd number of half turns turns it.
+    signs: Column<f64, ROWS>,
+    sines: [Column<f64, ROWS>; 3],
+    cosines: [Column<f64, ROWS>; 3],
+}
+
+impl Desk {
+    fn new() -> Self {
+        let zero = [0.0; ROWS];
+        Self { guards: zero, rests: zero, squares: zero, signs: zero, sines: [zero; 3], cosines: [zero; 3] }
+    }
+}
+
+/// The rotors of a block; stage by stage, as slerp is.
 #[inline(always)]
-fn rotor<const PROPER: bool>([a, b, c]: [f64; 3], parity: f64) -> [f64; 4] {
-    let [(sa, ca), (sb, cb), (sc, cc)] = [half(a), half(b), half(c)];
+fn rotors<const PROPER: bool>(
+    angles: [&Column<f64, ROWS>; 3],
+    parity: f64,
+    out: &mut [&mut Column<f64, ROWS>; 4],
+    desk: &mut Desk,
+) {
+    /// Beyond it the multiples of π that are taken off are no longer exact.
+    const MOST: f64 = 1e5;
+    let Desk { guards, rests, squares, signs, sines, cosines } = desk;
+    for row in 0..ROWS {
+        guards[row] = MOST - size([angles[0][row], angles[1][row], angles[2][row]]);
+        signs[row] = 1.0;
+    }
+    for axis in 0..3 {
+        for row in 0..ROWS {
+            let (rest, sign) = half(angles[axis][row]);
+            rests[row] = rest;
+            squares[row] = rest * rest;
+            signs[row] *= sign;
+        }
+        for row in 0..ROWS {
+            sines[axis][row] = rests[row] * squares[row].sine_over_angle();
+        }
+        for row in 0..ROWS {
+            cosines[axis][row] = squares[row].cosine();
+        }
+    }
+    // The sign of the first goes into all parts.
+    for row in 0..ROWS {
+        sines[0][row] *= signs[row];
+        cosines[0][row] *= signs[row];
+    }
+    for row in 0..ROWS {
+        let sine = [sines[0][row], sines[1][row], sines[2][row]];
+        let cosine = [cosines[0][row], cosines[1][row], cosines[2][row]];
+        let parts = rotor::<PROPER>(sine, cosine, parity);
+        for part in 0..4 {
+            out[part][row] = parts[part];
+        }
+    }
+}
+
+#[inline(always)]
+fn rotor<const PROPER: bool>([sa, sb, sc]: [f64; 3], [ca, cb, cc]: [f64; 3], parity: f64) -> [f64; 4] {
     if PROPER {
         let (sum_sine, sum_cosine) = (sa * cc + ca * sc, ca * cc - sa * sc);
         let (sine, cosine) = (sa * cc - ca * sc, ca * cc + sa * sc);
         [cb * sum_cosine, -(cb * sum_sine), -(sb * cosine), -(parity * sb * sine)]
     } else {
+        let (both_cosines, both_sines) = (ca * cb, sa * sb);
+        let (sine_cosine, cosine_sine) = (sa * cb, ca * sb);
         [
-            ca * cb * cc - parity * sa * sb * sc,
-            -(sa * cb * cc + parity * ca * sb * sc),
-            -(ca * sb * cc - parity * sa * cb * sc),
-            -(ca * cb * sc + parity * sa * sb * cc),
+            both_cosines * cc - parity * (both_sines * sc),
+            -(sine_cosine * cc + parity * (cosine_sine * sc)),
+            -(cosine_sine * cc - parity * (sine_cosine * sc)),
+            -(both_cosines * sc + parity * (both_sines * cc)),
         ]
     }
 }
@@ -170,20 +240,17 @@ fn by_place(parts: PartsMut<'_, f64, 4>, places: [usize; 3]) -> PartsMut<'_, f64
 /// 1.5 · 2^52: adding it leaves no room for a fraction.
 const TO_WHOLE: f64 = 6_755_399_441_055_744.0;
 
-/// Sine and cosine of half an angle. Of three angles together the sign may be turned, which is the same rotation.
+/// Half an angle without whole half turns, −π/2 to π/2, and −1 where their number is odd, which turns sine and cosine.
 #[inline(always)]
 fn half(angle: f64) -> (f64, f64) {
-    /// π in three pieces of which the first two have 33 bits (after fdlibm's π/2), so that their multiples are exact.
-    const PI_PIECES: [f64; 3] =
-        [2.0 * 1.570_796_326_734_125_6, 2.0 * 6.077_100_506_303_966e-11, 2.0 * 2.022_266_248_795_950_6e-21];
+    /// π in two pieces of which the first has 33 bits (after fdlibm's π/2), so that its multiples are exact.
+    const PI_PIECES: [f64; 2] = [2.0 * 1.570_796_326_734_125_6, 2.0 * 6.077_100_506_506_192e-11];
     let angle = 0.5 * angle;
     let shifted = angle * FRAC_1_PI + TO_WHOLE;
     let whole = shifted - TO_WHOLE;
-    // The last bit says whether an odd number of half turns is taken off, which turns both signs.
+    // The last bit says whether their number is odd.
     let sign = f64::from_bits(1.0_f64.to_bits() ^ (shifted.to_bits() << 63));
-    let rest = ((angle - whole * PI_PIECES[0]) - whole * PI_PIECES[1]) - whole * PI_PIECES[2];
-    let square = rest * rest;
-    (sign * rest * square.sine_over_angle(), sign * square.cosine())
+    ((angle - whole * PI_PIECES[0]) - whole * PI_PIECES[1], sign)
 }
 
 /// The angle of `(x, y)` from −π to π; 0 for `(0, 0)`. As `f64::atan2` within 4e-16.

@@ -1,7 +1,7 @@
 //! From plane angles to rotors and back.
 
 use super::super::{Bivector, Rotor};
-use super::blocks::{each_row, each_row_guarded};
+use super::blocks::{Column, each_block, each_row, mend_rare};
 use super::level::Level;
 use super::real::Real;
 use super::streams::{Parts, PartsMut};
@@ -15,28 +15,45 @@ use super::streams::{Parts, PartsMut};
 /// # Panics
 /// When the streams differ in length.
 pub fn exp<F: Real>(level: Level, angles: Parts<'_, F, 3>, out: PartsMut<'_, F, 4>) {
-    // (π/2)² and a hair, as far as the polynomials reach.
-    let most = F::narrowed(2.467_402);
     level.run(
         #[inline(always)]
         || {
-            each_row_guarded(
+            each_block(
                 angles,
                 out,
                 #[inline(always)]
-                |[yz, zx, xy]: [F; 3]| {
-                    let square = F::HALF * F::HALF * (yz * yz + zx * zx + xy * xy);
-                    let factor = -F::HALF * square.sine_over_angle();
-                    ([square.cosine(), yz * factor, zx * factor, xy * factor], most - square)
-                },
-                |[yz, zx, xy]| {
-                    let angles = Bivector::new(yz.widened(), zx.widened(), xy.widened());
-                    let rotor = Rotor::from_plane_angles(angles);
-                    [rotor.s, rotor.yz, rotor.zx, rotor.xy].map(F::narrowed)
-                },
+                |angles: [&Column<F, 128>; 3], out: [&mut Column<F, 128>; 4]| exp_block(angles, out),
             );
         },
     );
+}
+
+#[inline(always)]
+fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], mut out: [&mut Column<F, ROWS>; 4]) {
+    // (π/2)² and a hair, as far as the polynomials reach.
+    let most = F::narrowed(2.467_402);
+    let [yz, zx, xy] = angles;
+    let (mut squares, mut guards, mut factors) = ([F::ZERO; ROWS], [F::ZERO; ROWS], [F::ZERO; ROWS]);
+    for row in 0..ROWS {
+        squares[row] = F::HALF * F::HALF * (yz[row] * yz[row] + zx[row] * zx[row] + xy[row] * xy[row]);
+        guards[row] = most - squares[row];
+    }
+    for row in 0..ROWS {
+        out[0][row] = squares[row].cosine();
+    }
+    for row in 0..ROWS {
+        factors[row] = -F::HALF * squares[row].sine_over_angle();
+    }
+    for part in 0..3 {
+        for row in 0..ROWS {
+            out[part + 1][row] = angles[part][row] * factors[row];
+        }
+    }
+    mend_rare(&guards, angles, out, &|[yz, zx, xy]: [F; 3]| {
+        let angles = Bivector::new(yz.widened(), zx.widened(), xy.widened());
+        let rotor = Rotor::from_plane_angles(angles);
+        [rotor.s, rotor.yz, rotor.zx, rotor.xy].map(F::narrowed)
+    });
 }
 
 /// The plane angles in radians of the short turns of unit rotors, row by row: [`Rotor::plane_angles`] within 1e-15 rad
@@ -54,7 +71,8 @@ pub fn log<F: Real>(level: Level, rotors: Parts<'_, F, 4>, out: PartsMut<'_, F, 
                 #[inline(always)]
                 |[s, yz, zx, xy]: [F; 4]| {
                     let sign = if s < F::ZERO { F::TWO } else { -F::TWO };
-                    let factor = sign * (F::ONE - s.size()).angle_over_sine();
+                    let (above, below) = s.size().angle_over_sine();
+                    let factor = sign * above / below;
                     [yz * factor, zx * factor, xy * factor]
                 },
             );

@@ -3,8 +3,12 @@
     pip install mpmath
     python3 src/rotor/batch/fit_coefficients.py
 
-Each is a Chebyshev fit in 60 digits, of the function without its value at 0, which stays exact. The error printed is
-the largest of the polynomial itself, before its factors are rounded to the machine's numbers.
+Each polynomial is a Chebyshev fit in 60 digits, of the function without its value at 0, which stays exact; each quotient meets
+its function at the Chebyshev points. The error printed is the largest of the fit itself, before its factors are rounded to the
+machine's numbers.
+
+Why quotients of `d = cos θ` where the angle comes out of a cosine: 6 over 6 does what takes a polynomial of degree 18, its two halves don't
+wait for each other, and all its factors are above 0, so that nothing cancels (in `1 − d` they alternate and lose two digits).
 """
 
 import pathlib
@@ -15,14 +19,14 @@ import mpmath as mp
 mp.mp.dps = 60
 
 
-def square_over_rest(u):
-    """θ²/u with u = 1 − cos θ: 2 at 0."""
-    return mp.mpf(2) if u == 0 else mp.acos(1 - u) ** 2 / u
+def square_over_rest(d):
+    """θ²/(1 − d) with d = cos θ: 2 at d = 1."""
+    return mp.mpf(2) if d == 1 else mp.acos(d) ** 2 / (1 - d)
 
 
-def angle_over_sine(u):
-    """θ/sin θ with u = 1 − cos θ: 1 at 0."""
-    return mp.mpf(1) if u == 0 else mp.acos(1 - u) / mp.sqrt(u * (2 - u))
+def angle_over_sine(d):
+    """θ/sin θ with d = cos θ: 1 at d = 1."""
+    return mp.mpf(1) if d == 1 else mp.acos(d) / mp.sqrt(1 - d * d)
 
 
 def sine_over_angle(y):
@@ -47,12 +51,31 @@ HAIR = mp.mpf("1.000001")
 
 # name, what it is, function, end of the range, degree for f64 and f32 (None: no f32 kernel needs it).
 FITS = [
-    ("SQUARE_OVER_REST", "`θ²/u` of `u = 1 − cos θ`, 0 ≤ u ≤ 1", square_over_rest, mp.mpf(1), 18, 8),
-    ("ANGLE_OVER_SINE", "`θ/sin θ` of `u = 1 − cos θ`, 0 ≤ u ≤ 1", angle_over_sine, mp.mpf(1), 20, 9),
     ("SINE_OVER_ANGLE", "`sin √y / √y`, 0 ≤ y ≤ (π/2)²", sine_over_angle, QUARTER, 8, 4),
     ("COSINE", "`cos √y`, 0 ≤ y ≤ (π/2)²", cosine, QUARTER, 8, 5),
     ("ARC_TANGENT", "`atan √y / √y`, 0 ≤ y ≤ tan²(π/8)", arc_tangent, EIGHTH_TANGENT, 12, None),
 ]
+
+# name, what it is, function, degree above and below for f64 and f32.
+QUOTIENTS = [
+    ("SQUARE_OVER_REST", "`θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1", square_over_rest, 6, 3),
+    ("ANGLE_OVER_SINE", "`θ/sin θ` of `d = cos θ`, 0 ≤ d ≤ 1", angle_over_sine, 6, 3),
+]
+
+
+def quotient(function, degree):
+    """Factors of rising powers above and below; the last one below is 1."""
+    count = 2 * degree + 1
+    points = [(1 - mp.cos(mp.pi * (2 * i + 1) / (2 * count))) / 2 for i in range(count)]
+    rows = [
+        [x**power for power in range(degree + 1)] + [-function(x) * x**power for power in range(degree)]
+        for x in points
+    ]
+    solved = mp.lu_solve(mp.matrix(rows), mp.matrix([function(x) * x**degree for x in points]))
+    above, below = list(solved[: degree + 1]), [*solved[degree + 1 :], mp.mpf(1)]
+    value = lambda x: mp.polyval(above[::-1], x) / mp.polyval(below[::-1], x)
+    error = max(abs(value(x) / function(x) - 1) for x in (mp.mpf(i) / 1000 for i in range(1001)))
+    return above, below, error
 
 
 def round_to(kind, value):
@@ -76,6 +99,8 @@ lines = [
     "//! Polynomials of the bulk kernels. Made by `fit_coefficients.py` beside this file; not to be edited by hand.",
     '#![expect(clippy::unreadable_literal, reason = "nobody reads them, and a script writes them")]',
     "",
+    "use super::real::Quotient;",
+    "",
 ]
 for name, meaning, function, end, *degrees in FITS:
     at_zero = function(mp.mpf(0))
@@ -92,6 +117,21 @@ for name, meaning, function, end, *degrees in FITS:
         lines.append(f"pub(super) const {name}_{kind.upper()}: [{kind}; {degree + 1}] = [")
         lines.extend(f"    {text(kind, factor)}," for factor in rising)
         lines.append("];")
+        lines.append("")
+
+for name, meaning, function, *degrees in QUOTIENTS:
+    for kind, degree in zip(("f64", "f32"), degrees):
+        above, below, error = quotient(function, degree)
+        print(f"{name} {kind}: {degree} over {degree}, error {mp.nstr(error, 3)}")
+        lines.append(f"/// {meaning}: factors of rising powers above the line, and below it all but the last, which is 1.")
+        lines.append(f"pub(super) const {name}_{kind.upper()}: Quotient<{kind}, {degree + 1}, {degree}> = Quotient {{")
+        lines.append("    above: [")
+        lines.extend(f"        {text(kind, factor)}," for factor in above)
+        lines.append("    ],")
+        lines.append("    below: [")
+        lines.extend(f"        {text(kind, factor)}," for factor in below[:-1])
+        lines.append("    ],")
+        lines.append("};")
         lines.append("")
 
 pathlib.Path(__file__).with_name("coefficients.rs").write_text("\n".join(lines[:-1]) + "\n")

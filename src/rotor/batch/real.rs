@@ -31,10 +31,10 @@ pub trait Polynomials:
     fn root(self) -> Self;
     fn widened(self) -> f64;
     fn narrowed(value: f64) -> Self;
-    /// `θ²/u` of `u = 1 − cos θ`, 0 to 1.
-    fn square_over_rest(self) -> Self;
-    /// `θ/sin θ` of `u = 1 − cos θ`, 0 to 1.
-    fn angle_over_sine(self) -> Self;
+    /// Numerator and denominator of `θ²/(1 − d)` of `d = cos θ`, 0 to 1.
+    fn square_over_rest(self) -> (Self, Self);
+    /// Numerator and denominator of `θ/sin θ` of `d = cos θ`, 0 to 1.
+    fn angle_over_sine(self) -> (Self, Self);
     /// `sin √y/√y`, 0 to (π/2)².
     fn sine_over_angle(self) -> Self;
     /// `cos √y`, 0 to (π/2)².
@@ -65,12 +65,12 @@ macro_rules! polynomials {
                 ($narrow)(value)
             }
             #[inline(always)]
-            fn square_over_rest(self) -> Self {
-                polynomial(&fitted::$square, self)
+            fn square_over_rest(self) -> (Self, Self) {
+                fitted::$square.at(self)
             }
             #[inline(always)]
-            fn angle_over_sine(self) -> Self {
-                polynomial(&fitted::$angle, self)
+            fn angle_over_sine(self) -> (Self, Self) {
+                fitted::$angle.at(self)
             }
             #[inline(always)]
             fn sine_over_angle(self) -> Self {
@@ -101,6 +101,26 @@ polynomials!(
     COSINE_F64
 );
 
+/// A quotient of two polynomials: factors of rising powers, below the line without the last one, which is 1.
+pub(super) struct Quotient<F, const ABOVE: usize, const BELOW: usize> {
+    pub(super) above: [F; ABOVE],
+    pub(super) below: [F; BELOW],
+}
+
+impl<F: Mul<Output = F> + Add<Output = F> + Copy, const ABOVE: usize, const BELOW: usize>
+    Quotient<F, ABOVE, BELOW>
+{
+    /// What stands above and below the line.
+    #[inline(always)]
+    fn at(&self, d: F) -> (F, F) {
+        let mut below = d + self.below[BELOW - 1];
+        for power in (0..BELOW - 1).rev() {
+            below = below * d + self.below[power];
+        }
+        (polynomial(&self.above, d), below)
+    }
+}
+
 /// The polynomial with these factors of rising powers.
 ///
 /// A short one is summed by Horner's rule, which rounds least. In a long one even and odd powers are summed apart: each sum
@@ -110,7 +130,7 @@ pub(super) fn polynomial<F: Mul<Output = F> + Add<Output = F> + Copy, const N: u
     factors: &[F; N],
     y: F,
 ) -> F {
-    if N < 10 {
+    if N < 8 {
         let mut sum = factors[N - 1];
         for power in (0..N - 1).rev() {
             sum = sum * y + factors[power];

@@ -1,10 +1,13 @@
 //! Slerp and squad.
 
 use super::super::{self as one, Rotor};
-use super::blocks::{each_row, each_row_guarded};
+use super::blocks::{Column, each_block, mend_rare};
 use super::level::Level;
 use super::real::Real;
 use super::streams::{Parts, PartsMut};
+
+const SLERP_ROWS: usize = 32;
+const SQUAD_ROWS: usize = 512;
 
 /// Slerp the short way, row by row: [`super::super::slerp`] within 1e-15 rad (`f32`: 3e-7 rad).
 ///
@@ -26,11 +29,14 @@ pub fn slerp<F: Real>(
     level.run(
         #[inline(always)]
         || {
-            each_row(
+            let mut desk = [[F::ZERO; SLERP_ROWS]; 7];
+            each_block(
                 joined(a, b, t),
                 out,
                 #[inline(always)]
-                |row: [F; 9]| short_way(split(row)),
+                |[a0, a1, a2, a3, b0, b1, b2, b3, t]: [&Column<F, SLERP_ROWS>; 9], out: [&mut Column<F, SLERP_ROWS>; 4]| {
+                    short_way([a0, a1, a2, a3], [b0, b1, b2, b3], t, out, &mut desk);
+                },
             );
         },
     );
@@ -58,48 +64,120 @@ pub fn squad<F: Real>(
     level.run(
         #[inline(always)]
         || {
-            each_row_guarded(
+            let zero = [F::ZERO; SQUAD_ROWS];
+            let (mut ends, mut more, mut desk) = ([[zero; 4]; 2], [zero; 2], [[F::ZERO; SLERP_ROWS]; 7]);
+            each_block(
                 streams,
                 out,
                 #[inline(always)]
-                |row: [F; 17]| {
-                    let [a, inner_a, inner_b, b] = four(row);
-                    let t = row[16];
-                    let outer = short_way((a, b, t));
-                    let inner = short_way((inner_a, inner_b, t));
-                    let found = short_way((outer, inner, F::TWO * t * (F::ONE - t)));
-                    // The polynomials end at a turn of 180°; what goes beyond, as signed, is rare.
-                    let guards = [dot(a, b), dot(inner_a, inner_b), dot(outer, inner)];
-                    let smaller = |x: F, y: F| if x < y { x } else { y };
-                    (found, smaller(smaller(guards[0], guards[1]), guards[2]))
-                },
-                |row| {
-                    let [a, inner_a, inner_b, b] = four(row).map(widened);
-                    narrowed(one::squad(a, inner_a, inner_b, b, row[16].widened()))
-                },
+                |block: [&Column<F, SQUAD_ROWS>; 17], out: [&mut Column<F, SQUAD_ROWS>; 4]| squad_block(block, out, &mut ends, &mut more, &mut desk),
             );
         },
     );
 }
 
 #[inline(always)]
-fn short_way<F: Real>((a, b, t): ([F; 4], [F; 4], F)) -> [F; 4] {
-    let dot = dot(a, b);
-    let sign = if dot < F::ZERO { -F::ONE } else { F::ONE };
-    let rest = F::ONE - dot.size();
-    let over_rest = rest.square_over_rest();
-    let square = rest * over_rest;
-    // θ/sin θ. A root and a division keep other parts of the machine busy than one more polynomial would.
-    let stretch = (over_rest / (F::TWO - rest)).root();
-    let back = F::ONE - t;
-    let from = back * stretch * (back * back * square).sine_over_angle();
-    let to = sign * t * stretch * (t * t * square).sine_over_angle();
-    std::array::from_fn(|part| a[part] * from + b[part] * to)
+fn squad_block<F: Real>(
+    block: [&Column<F, SQUAD_ROWS>; 17],
+    mut out: [&mut Column<F, SQUAD_ROWS>; 4],
+    [outer, inner]: &mut [[Column<F, SQUAD_ROWS>; 4]; 2],
+    [guards, shares]: &mut [Column<F, SQUAD_ROWS>; 2],
+    desk: &mut Desk<F>,
+) {
+    let t = block[16];
+    for row in 0..SQUAD_ROWS {
+        shares[row] = F::TWO * t[row] * (F::ONE - t[row]);
+    }
+    // One slerp after the other, so that few streams are read at a time.
+    for part in 0..SQUAD_ROWS / SLERP_ROWS {
+        let columns = |first: usize| std::array::from_fn(|i| part_of(block[first + i], part));
+        let out = outer.each_mut().map(|column| part_of_mut(column, part));
+        short_way(columns(0), columns(12), part_of(t, part), out, desk);
+        *part_of_mut(guards, part) = desk[0];
+    }
+    for part in 0..SQUAD_ROWS / SLERP_ROWS {
+        let columns = |first: usize| std::array::from_fn(|i| part_of(block[first + i], part));
+        let out = inner.each_mut().map(|column| part_of_mut(column, part));
+        short_way(columns(4), columns(8), part_of(t, part), out, desk);
+        lower(part_of_mut(guards, part), &desk[0]);
+    }
+    for part in 0..SQUAD_ROWS / SLERP_ROWS {
+        let columns = [&*outer, &*inner].map(|four| four.each_ref().map(|column| part_of(column, part)));
+        let out = out.each_mut().map(|column| part_of_mut(column, part));
+        short_way(columns[0], columns[1], part_of(shares, part), out, desk);
+        lower(part_of_mut(guards, part), &desk[0]);
+    }
+    // The fits end at a turn of 180°; what goes beyond, as signed, is rare.
+    mend_rare(guards, block, out, &|row: [F; 17]| {
+        let [a, inner_a, inner_b, b] = four(row).map(widened);
+        narrowed(one::squad(a, inner_a, inner_b, b, row[16].widened()))
+    });
 }
 
 #[inline(always)]
-fn dot<F: Real>(a: [F; 4], b: [F; 4]) -> F {
-    a[0] * b[0] + a[1] * b[1] + a[2] * b[2] + a[3] * b[3]
+fn part_of<F>(column: &Column<F, SQUAD_ROWS>, part: usize) -> &Column<F, SLERP_ROWS> {
+    &column.as_chunks().0[part]
+}
+
+#[inline(always)]
+fn part_of_mut<F>(column: &mut Column<F, SQUAD_ROWS>, part: usize) -> &mut Column<F, SLERP_ROWS> {
+    &mut column.as_chunks_mut().0[part]
+}
+
+/// The smaller in each row; `other` where one is no number.
+#[inline(always)]
+fn lower<F: Real>(guards: &mut Column<F, SLERP_ROWS>, other: &Column<F, SLERP_ROWS>) {
+    for row in 0..SLERP_ROWS {
+        guards[row] = if guards[row] < other[row] { guards[row] } else { other[row] };
+    }
+}
+
+/// Where the stages of a block lie. The first column is the dot products as signed.
+type Desk<F> = [Column<F, SLERP_ROWS>; 7];
+
+/// Slerp of a block.
+///
+/// Stage by stage, each in a loop of its own: the steps of a polynomial have to wait for each other, and of a short loop so many
+/// rounds are under way at once that none waits.
+#[inline(always)]
+fn short_way<F: Real>(
+    a: [&Column<F, SLERP_ROWS>; 4],
+    b: [&Column<F, SLERP_ROWS>; 4],
+    t: &Column<F, SLERP_ROWS>,
+    out: [&mut Column<F, SLERP_ROWS>; 4],
+    [dots, above, below, squares, stretches, from, to]: &mut Desk<F>,
+) {
+    for row in 0..SLERP_ROWS {
+        dots[row] = a[0][row] * b[0][row] + a[1][row] * b[1][row] + a[2][row] * b[2][row] + a[3][row] * b[3][row];
+    }
+    for row in 0..SLERP_ROWS {
+        (above[row], below[row]) = dots[row].size().square_over_rest();
+    }
+    // θ² and (θ/sin θ)².
+    for row in 0..SLERP_ROWS {
+        let cosine = dots[row].size();
+        let shared = above[row] / (below[row] * (F::ONE + cosine));
+        stretches[row] = shared;
+        squares[row] = shared * (F::ONE + cosine) * (F::ONE - cosine);
+    }
+    for row in 0..SLERP_ROWS {
+        let back = F::ONE - t[row];
+        from[row] = back * (back * back * squares[row]).sine_over_angle();
+        stretches[row] = stretches[row].root();
+    }
+    for row in 0..SLERP_ROWS {
+        to[row] = t[row] * (t[row] * t[row] * squares[row]).sine_over_angle();
+    }
+    for row in 0..SLERP_ROWS {
+        let stretch = stretches[row];
+        from[row] = from[row] * stretch;
+        to[row] = to[row] * if dots[row] < F::ZERO { -stretch } else { stretch };
+    }
+    for part in 0..4 {
+        for row in 0..SLERP_ROWS {
+            out[part][row] = a[part][row] * from[row] + b[part][row] * to[row];
+        }
+    }
 }
 
 #[inline(always)]
@@ -107,11 +185,6 @@ fn joined<'a, F>(a: Parts<'a, F, 4>, b: Parts<'a, F, 4>, t: &'a [F]) -> Parts<'a
     let [a0, a1, a2, a3] = a;
     let [b0, b1, b2, b3] = b;
     [a0, a1, a2, a3, b0, b1, b2, b3, t]
-}
-
-#[inline(always)]
-fn split<F: Copy>([a0, a1, a2, a3, b0, b1, b2, b3, t]: [F; 9]) -> ([F; 4], [F; 4], F) {
-    ([a0, a1, a2, a3], [b0, b1, b2, b3], t)
 }
 
 #[inline(always)]

@@ -30,7 +30,8 @@ pub fn turns<F: Real>(level: Level, a: Parts<'_, F, 4>, b: Parts<'_, F, 4>, out:
                     }
                     // R and −R are one rotation. Half the square of the distance is 1 − cos of half the turn.
                     let rest = F::HALF * if sum < apart { sum } else { apart };
-                    [F::TWO * (rest * rest.square_over_rest()).root()]
+                    let (above, below) = (F::ONE - rest).square_over_rest();
+                    [F::TWO * (rest * above / below).root()]
                 },
             );
         },
