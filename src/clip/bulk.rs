@@ -4,13 +4,12 @@ use crate::rotor::Rotor;
 use crate::rotor::batch::{self, Level, Parts, PartsMut, Streams};
 use crate::skeleton::LocalPose;
 
-use super::path::{PathKind, piece_of};
+use super::path::{PathKind, Paths, piece_of};
+use super::places::{Places, TILE};
 use super::rotation_track::RotationTrack;
+use super::sampler::Sampler;
 use super::take::Clip;
 use super::times::Place;
-
-/// Orientations that are computed together; few enough to stay in the first cache.
-const TILE: usize = 256;
 
 impl RotationTrack {
     /// [`RotationTrack::at`] for each of `times_secs`, several times as fast for many: within 1e-15 rad of it, and at keys the
@@ -21,12 +20,12 @@ impl RotationTrack {
 
     /// As [`RotationTrack::at_all`], with `path` in place of the track's own path kinds where it is given.
     pub fn at_all_by(&self, times_secs: &[f64], path: Option<PathKind>) -> Vec<Rotor> {
-        // A few times don't pay for looking at all keys.
-        let keys = if 4 * times_secs.len() > self.keys.len() {
-            Some(self.keys.sound())
-        } else {
-            self.keys.sound_if_made()
-        };
+        let keys = self.sound_for(times_secs.len());
+        if let Some(keys) = keys
+            && self.is_plain(path)
+        {
+            return self.plain_at(keys, times_secs);
+        }
         let sound = |key: usize| match keys {
             Some(keys) => {
                 let [s, yz, zx, xy] = keys.get(key);
@@ -92,6 +91,46 @@ impl RotationTrack {
         }
         slerps.flush(&mut found);
         squads.flush(&mut found);
+        found
+    }
+
+    /// The sound keys in streams, where so many times pay for looking at all keys or it is done already.
+    pub(super) fn sound_for(&self, times: usize) -> Option<&Streams<f64, 4>> {
+        /// Who asks for so many asks again.
+        const MANY: usize = 128;
+        if times >= MANY || 4 * times > self.keys.len() {
+            Some(self.keys.sound())
+        } else {
+            self.keys.sound_if_made()
+        }
+    }
+
+    /// Whether it has keys, and every segment goes the short way evenly by slerp.
+    pub(super) fn is_plain(&self, path: Option<PathKind>) -> bool {
+        let kind = match (path, &self.paths) {
+            (Some(kind), _) => Some(kind),
+            (None, Paths::Every(kind)) => Some(*kind),
+            (None, Paths::Each(_)) => None,
+        };
+        let is_slerp = match kind {
+            Some(PathKind::Slerp) => true,
+            Some(PathKind::Cubic) => self.tangents.is_none(),
+            _ => false,
+        };
+        is_slerp && self.segments.are_plain() && !self.times.is_empty()
+    }
+
+    fn plain_at(&self, keys: &Streams<f64, 4>, times_secs: &[f64]) -> Vec<Rotor> {
+        let mut found = Vec::with_capacity(times_secs.len());
+        let (mut sampler, mut places) = (Sampler::new(), Places::new());
+        let mut tile = [[0.0; TILE]; 4];
+        for times_secs in times_secs.chunks(TILE) {
+            places.find(&self.times, times_secs);
+            let rows = 0..times_secs.len();
+            sampler.sample(keys, &places, tile.each_mut().map(|stream| &mut stream[rows.clone()]));
+            let [s, yz, zx, xy] = &tile;
+            found.extend(rows.map(|row| Rotor::new(s[row], yz[row], zx[row], xy[row])));
+        }
         found
     }
 }

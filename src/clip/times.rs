@@ -19,7 +19,7 @@ pub enum Times {
 /// Where a time falls among keys.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Place {
-    /// Exactly on a key, or before the first or after the last, where the end key is held.
+    /// On a key within the rounding of the time, or before the first or after the last, where the end key is held.
     At(usize),
     /// Between key `.0` and the next, at share `.1` of the way, above 0 and below 1.
     Between(usize, f64),
@@ -83,11 +83,7 @@ impl Times {
             }
             Self::Listed(times) => times.partition_point(|&time| time <= time_secs) - 1,
         };
-        let start = self.at(before);
-        if start == time_secs {
-            return Some(Place::At(before));
-        }
-        Some(Place::Between(before, (time_secs - start) / (self.at(before + 1) - start)))
+        Some(place_between(before, time_secs, self.at(before), self.at(before + 1)))
     }
 
     /// As [`Times::place`], sooner where `time_secs` falls just after key `near` or the one behind it: for rows of rising times.
@@ -98,11 +94,8 @@ impl Times {
                 break;
             }
             let (start, end) = (self.at(before), self.at(before + 1));
-            if start == time_secs {
-                return Some(Place::At(before));
-            }
-            if start < time_secs && time_secs < end {
-                return Some(Place::Between(before, (time_secs - start) / (end - start)));
+            if start <= time_secs && time_secs < end {
+                return Some(place_between(before, time_secs, start, end));
             }
         }
         self.place(time_secs)
@@ -133,6 +126,23 @@ impl Times {
     }
 }
 
+/// A share of a time within which it is on a key: `k/60` and `k·(1/60)` differ so much, and either may be the key's or the one asked
+/// for.
+pub(super) const ROUNDING: f64 = 4.0 * f64::EPSILON;
+
+/// A time between key `before`, at `start` seconds or earlier than the time, and the next, later than it at `end`.
+fn place_between(before: usize, time_secs: f64, start: f64, end: f64) -> Place {
+    let near = ROUNDING * time_secs.abs();
+    let (past, left) = (time_secs - start, end - time_secs);
+    if past <= near && past <= left {
+        Place::At(before)
+    } else if left <= near {
+        Place::At(before + 1)
+    } else {
+        Place::Between(before, past / (end - start))
+    }
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -145,6 +155,15 @@ mod tests {
             assert_eq!(times.place(times.at(frame)), Some(Place::At(frame)));
         }
         assert_eq!(times.place(f64::NAN), Some(Place::At(0)));
+    }
+
+    #[test]
+    fn a_time_told_in_another_way_is_on_the_key() {
+        let times = Times::Even { step_secs: 1.0 / 60.0, count: 5000 };
+        for frame in 0..5000 {
+            assert_eq!(times.place(frame as f64 / 60.0), Some(Place::At(frame)));
+        }
+        assert!(matches!(times.place(1.0 / 60.0 + 1e-13), Some(Place::Between(1, share)) if share < 1e-11));
     }
 
     #[test]

@@ -1,13 +1,19 @@
 //! Every joint in the scene at many times at once.
 
+use std::sync::Arc;
+
 use glam::DVec3;
 
 use crate::rotor::Rotor;
-use crate::rotor::batch::{self, Level, Streams};
+use crate::rotor::batch::{self, Level, Parts, Streams};
 use crate::skeleton::WorldJoint;
 
 use super::path::PathKind;
+use super::places::{Places, TILE};
+use super::rotation_track::RotationTrack;
+use super::sampler::Sampler;
 use super::take::Clip;
+use super::times::Times;
 
 /// Where each joint stands and how it is turned in the scene, at some times.
 #[derive(Clone, Debug)]
@@ -15,10 +21,44 @@ pub struct Worlds(Form);
 
 #[derive(Clone, Debug)]
 enum Form {
-    /// Without scales a joint is a turn and a place: streams over the times, for each joint.
-    Rigid(Vec<(Streams<f64, 4>, Streams<f64, 3>)>),
+    /// Without scales a joint is a turn and a place.
+    Rigid(Rigid),
     /// With scales: the joints at each time.
     Scaled(Vec<Vec<WorldJoint>>),
+}
+
+/// For each joint seven streams over the times: the parts of its turn and its place.
+#[derive(Clone, Debug)]
+struct Rigid {
+    numbers: Vec<f64>,
+    times: usize,
+}
+
+impl Rigid {
+    /// Numbers left free behind each stream: streams that begin at the same place of a memory page drive each other out of the
+    /// first cache.
+    const GAP: usize = 8;
+
+    fn stream(&self, joint: usize, part: usize) -> &[f64] {
+        let start = (7 * joint + part) * (self.times + Self::GAP);
+        &self.numbers[start..start + self.times]
+    }
+
+    fn turns(&self, joint: usize) -> Parts<'_, f64, 4> {
+        std::array::from_fn(|part| self.stream(joint, part))
+    }
+
+    fn places(&self, joint: usize) -> Parts<'_, f64, 3> {
+        std::array::from_fn(|part| self.stream(joint, part + 4))
+    }
+
+    /// The next joint.
+    fn push(&mut self, turns: Parts<'_, f64, 4>, places: Parts<'_, f64, 3>) {
+        for stream in turns.into_iter().chain(places) {
+            self.numbers.extend_from_slice(stream);
+            self.numbers.extend_from_slice(&[0.0; Self::GAP]);
+        }
+    }
 }
 
 impl Worlds {
@@ -28,8 +68,8 @@ impl Worlds {
     /// When there is no such joint or time.
     pub fn rotation(&self, joint: usize, time: usize) -> Rotor {
         match &self.0 {
-            Form::Rigid(joints) => {
-                let [s, yz, zx, xy] = joints[joint].0.get(time);
+            Form::Rigid(rigid) => {
+                let [s, yz, zx, xy] = rigid.turns(joint).map(|stream| stream[time]);
                 Rotor::new(s, yz, zx, xy)
             }
             Form::Scaled(times) => times[time][joint].rotation,
@@ -42,7 +82,7 @@ impl Worlds {
     /// When there is no such joint or time.
     pub fn position(&self, joint: usize, time: usize) -> DVec3 {
         match &self.0 {
-            Form::Rigid(joints) => joints[joint].1.get(time).into(),
+            Form::Rigid(rigid) => rigid.places(joint).map(|stream| stream[time]).into(),
             Form::Scaled(times) => times[time][joint].position(),
         }
     }
@@ -77,32 +117,99 @@ impl Clip {
             let locals = self.locals_at_by(times_secs, path);
             return Worlds(Form::Scaled(locals.iter().map(|local| self.skeleton.world(local)).collect()));
         }
-        let mut worlds: Vec<(Streams<f64, 4>, Streams<f64, 3>)> = Vec::with_capacity(joints.len());
+        let count = times_secs.len();
+        let mut worlds =
+            Rigid { numbers: Vec::with_capacity(7 * joints.len() * (count + Rigid::GAP)), times: count };
+        let (mut turns, mut places) = (Streams::zeros(count), Streams::zeros(count));
+        let mut world = (Streams::zeros(count), Streams::zeros(count));
+        let mut sampling = Sampling::new(times_secs, path);
         for (joint, own) in joints.iter().enumerate() {
-            let turns = self.rotations_at_by(joint, times_secs, path);
-            let turns = Streams::from_rows(turns.iter().map(|turn| [turn.s, turn.yz, turn.zx, turn.xy]));
-            let track = self.joints.get(joint).and_then(|tracks| tracks.translation.as_ref());
+            let tracks = self.joints.get(joint).map(|tracks| &**tracks);
+            let rotation = tracks.and_then(|tracks| tracks.rotation.as_ref());
+            sampling.turns(rotation, own.rest.rotation, &mut turns);
             let rest = own.rest.translation;
-            let places = match track {
-                Some(track) => Streams::from_rows(
-                    times_secs.iter().map(|&secs| track.at(secs).unwrap_or(rest).to_array()),
-                ),
-                None => Streams::repeated(rest.to_array(), times_secs.len()),
-            };
+            let track = tracks.and_then(|tracks| tracks.translation.as_ref());
+            let track = track.filter(|track| !track.times.is_empty());
+            if let Some(track) = track {
+                for (row, &secs) in times_secs.iter().enumerate() {
+                    places.set(row, track.at(secs).unwrap_or(rest).to_array());
+                }
+            }
             let Some(parent) = own.parent else {
-                worlds.push((turns, places));
+                if track.is_none() {
+                    for (stream, part) in places.parts_mut().into_iter().zip(rest.to_array()) {
+                        stream.fill(part);
+                    }
+                }
+                worlds.push(turns.parts(), places.parts());
                 continue;
             };
-            let mut world = (Streams::zeros(times_secs.len()), Streams::zeros(times_secs.len()));
-            batch::carry(
-                Level::best(),
-                (worlds[parent].0.parts(), worlds[parent].1.parts()),
-                (turns.parts(), places.parts()),
-                (world.0.parts_mut(), world.1.parts_mut()),
-            );
-            worlds.push(world);
+            let above = (worlds.turns(parent), worlds.places(parent));
+            let out = (world.0.parts_mut(), world.1.parts_mut());
+            match track {
+                Some(_) => batch::carry(Level::best(), above, (turns.parts(), places.parts()), out),
+                None => batch::carry_bone(Level::best(), above, (turns.parts(), rest.to_array()), out),
+            }
+            worlds.push(world.0.parts(), world.1.parts());
         }
         Worlds(Form::Rigid(worlds))
+    }
+}
+
+/// Joint after joint at the same times.
+struct Sampling<'a> {
+    times_secs: &'a [f64],
+    path: Option<PathKind>,
+    sampler: Sampler,
+    /// Where the times fall among the keys of the joint before: most joints of a clip have their keys at the same times.
+    places: Option<(&'a Times, Vec<Places>)>,
+}
+
+impl<'a> Sampling<'a> {
+    fn new(times_secs: &'a [f64], path: Option<PathKind>) -> Self {
+        Self { times_secs, path, sampler: Sampler::new(), places: None }
+    }
+
+    fn turns(&mut self, track: Option<&'a RotationTrack>, rest: Rotor, out: &mut Streams<f64, 4>) {
+        let parts = |rotor: Rotor| [rotor.s, rotor.yz, rotor.zx, rotor.xy];
+        let Some(track) = track.filter(|track| !track.times.is_empty()) else {
+            for (stream, part) in out.parts_mut().into_iter().zip(parts(rest)) {
+                stream.fill(part);
+            }
+            return;
+        };
+        let Some(keys) = track.sound_for(self.times_secs.len()).filter(|_| track.is_plain(self.path)) else {
+            for (row, turn) in track.at_all_by(self.times_secs, self.path).into_iter().enumerate() {
+                out.set(row, parts(turn));
+            }
+            return;
+        };
+        let places = match self.places.take() {
+            Some(last) if same_times(last.0, &track.times) => self.places.insert(last),
+            _ => {
+                let tiles = self.times_secs.chunks(TILE).map(|secs| {
+                    let mut places = Places::new();
+                    places.find(&track.times, secs);
+                    places
+                });
+                self.places.insert((&track.times, tiles.collect()))
+            }
+        };
+        let mut start = 0;
+        for places in &places.1 {
+            let tile = out.parts_mut().map(|stream| &mut stream[start..start + places.len]);
+            self.sampler.sample(keys, places, tile);
+            start += places.len;
+        }
+    }
+}
+
+/// Whether they are surely the same; without looking at long lists.
+fn same_times(own: &Times, other: &Times) -> bool {
+    match (own, other) {
+        (Times::Listed(own), Times::Listed(other)) => Arc::ptr_eq(own, other),
+        (Times::Even { .. }, Times::Even { .. }) => own == other,
+        _ => false,
     }
 }
 

@@ -4,6 +4,7 @@ use std::f64::consts::PI;
 
 use glam::{DMat3, DVec3};
 
+use super::batch::{Level, Streams, compose, exp};
 use super::slope::{inverse_jacobian, jacobian, turning_term};
 use super::{Bivector, Motion, Rotor};
 
@@ -156,6 +157,51 @@ impl RotationSpline {
         }
         let angles = self.segments[segment].angles(s);
         self.keys[segment] * Rotor::from_plane_angles(Bivector::from_axis(angles))
+    }
+
+    /// [`RotationSpline::at`] for each of `times`, several times as fast for many, chiefly where they rise: within 2e-15 rad of it.
+    #[must_use]
+    pub fn at_all(&self, times: &[f64]) -> Vec<Rotor> {
+        const TILE: usize = 128;
+        let mut found = Vec::with_capacity(times.len());
+        let mut angles = Streams::zeros(TILE);
+        let (mut starts, mut turns, mut results) =
+            (Streams::zeros(TILE), Streams::zeros(TILE), Streams::zeros(TILE));
+        let level = Level::best();
+        let mut near = 0;
+        for tile in times.chunks(TILE) {
+            for (row, &t) in tile.iter().enumerate() {
+                // Mostly it is the segment of the time before, or the next.
+                let holds = |segment: usize| self.times[segment] <= t && t < self.times[segment + 1];
+                if !holds(near) {
+                    near = (near + 1).min(self.segments.len() - 1);
+                    if !holds(near) {
+                        near = self.segment_at(t).0;
+                    }
+                }
+                let (start, end) = (self.times[near], self.times[near + 1]);
+                // At the last key and behind it that key itself.
+                let (key, s) = if t >= end { (near + 1, 0.0) } else { (near, t.max(start).min(end) - start) };
+                let Rotor { s: scalar, yz, zx, xy } = self.keys[key];
+                starts.set(row, [scalar, yz, zx, xy]);
+                angles.set(row, self.segments[near].angles(s).to_array());
+            }
+            let rows = 0..tile.len();
+            exp(
+                level,
+                angles.parts().map(|stream| &stream[rows.clone()]),
+                turns.parts_mut().map(|stream| &mut stream[rows.clone()]),
+            );
+            compose(
+                level,
+                starts.parts().map(|stream| &stream[rows.clone()]),
+                turns.parts().map(|stream| &stream[rows.clone()]),
+                results.parts_mut().map(|stream| &mut stream[rows.clone()]),
+            );
+            let [s, yz, zx, xy] = results.parts();
+            found.extend(rows.map(|row| Rotor::new(s[row], yz[row], zx[row], xy[row])));
+        }
+        found
     }
 
     /// The body rate at time `t` in radians per second; outside the keys, that at the nearest key.

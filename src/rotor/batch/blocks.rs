@@ -20,46 +20,42 @@ pub(super) fn each_row<F: Real, const I: usize, const O: usize>(
     outputs: PartsMut<'_, F, O>,
     lane: impl Fn([F; I]) -> [F; O],
 ) {
+    let mut found = [[F::ZERO; BLOCK]; O];
     each_block(
         inputs,
         outputs,
         #[inline(always)]
-        |block: [&Column<F, BLOCK>; I], found: [&mut Column<F, BLOCK>; O]| {
-            for row in 0..BLOCK {
-                let results = lane(std::array::from_fn(|part| block[part][row]));
-                for part in 0..O {
-                    found[part][row] = results[part];
+        |block: [&Column<F, BLOCK>; I], out: [&mut Column<F, BLOCK>; O]| {
+            if I + O <= FEW {
+                fill(block, out, &lane);
+            } else {
+                fill(block, found.each_mut(), &lane);
+                for (column, found) in out.into_iter().zip(&found) {
+                    for row in 0..BLOCK {
+                        column[row] = found[row];
+                    }
                 }
             }
         },
     );
 }
 
-/// As [`each_row`], for formulas that do not cover every argument: `lane` also tells a guard, and where that is below 0 or
-/// no number the row is computed by `exact`.
+/// So many streams the compiler tests for overlap before it makes a loop of wide instructions. With more it makes none, unless the
+/// results go into arrays of their own first.
+const FEW: usize = 8;
+
 #[inline(always)]
-pub(super) fn each_row_guarded<F: Real, const I: usize, const O: usize>(
-    inputs: Parts<'_, F, I>,
-    outputs: PartsMut<'_, F, O>,
-    lane: impl Fn([F; I]) -> ([F; O], F),
-    exact: impl Fn([F; I]) -> [F; O],
+fn fill<F: Real, const I: usize, const O: usize>(
+    block: [&Column<F, BLOCK>; I],
+    out: [&mut Column<F, BLOCK>; O],
+    lane: &impl Fn([F; I]) -> [F; O],
 ) {
-    each_block(
-        inputs,
-        outputs,
-        #[inline(always)]
-        |block: [&Column<F, BLOCK>; I], found: [&mut Column<F, BLOCK>; O]| {
-            let mut guards = [F::ZERO; BLOCK];
-            for row in 0..BLOCK {
-                let (results, guard) = lane(std::array::from_fn(|part| block[part][row]));
-                for part in 0..O {
-                    found[part][row] = results[part];
-                }
-                guards[row] = guard;
-            }
-            mend_rare(&guards, block, found, &exact);
-        },
-    );
+    for row in 0..BLOCK {
+        let results = lane(std::array::from_fn(|part| block[part][row]));
+        for part in 0..O {
+            out[part][row] = results[part];
+        }
+    }
 }
 
 /// Computes by `exact` the rows whose guard is below 0 or no number.
@@ -67,7 +63,7 @@ pub(super) fn each_row_guarded<F: Real, const I: usize, const O: usize>(
 pub(super) fn mend_rare<F: Real, const I: usize, const O: usize, const ROWS: usize>(
     guards: &Column<F, ROWS>,
     block: [&Column<F, ROWS>; I],
-    found: [&mut Column<F, ROWS>; O],
+    mut found: [&mut Column<F, ROWS>; O],
     exact: &impl Fn([F; I]) -> [F; O],
 ) {
     if guards.iter().fold(false, |any, guard| any | is_rare(*guard)) {
@@ -97,7 +93,8 @@ pub(super) fn each_block<F: Real, const I: usize, const O: usize, const ROWS: us
     let whole = len - len % ROWS;
     for start in (0..whole).step_by(ROWS) {
         let block: [&Column<F, ROWS>; I] = std::array::from_fn(|part| block_at(inputs[part], start));
-        let direct: [&mut Column<F, ROWS>; O] = outputs.each_mut().map(|output| output[start..].first_chunk_mut().expect("whole"));
+        let direct: [&mut Column<F, ROWS>; O] =
+            outputs.each_mut().map(|output| output[start..].first_chunk_mut().expect("whole"));
         kernel(block, direct);
     }
     let rest = len - whole;
@@ -129,7 +126,7 @@ fn block_at<F, const ROWS: usize>(stream: &[F], start: usize) -> &Column<F, ROWS
 
 #[inline(always)]
 #[track_caller]
-fn common_len<F, const I: usize, const O: usize>(
+pub(super) fn common_len<F, const I: usize, const O: usize>(
     inputs: &Parts<'_, F, I>,
     outputs: &PartsMut<'_, F, O>,
 ) -> usize {

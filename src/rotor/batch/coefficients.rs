@@ -17,13 +17,8 @@ pub(super) const SINE_OVER_ANGLE_F64: [f64; 9] = [
 ];
 
 /// `sin √y / √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
-pub(super) const SINE_OVER_ANGLE_F32: [f32; 5] = [
-    1.0,
-    -0.16666666,
-    0.0083332425,
-    -0.0001982274,
-    2.6347564e-06,
-];
+pub(super) const SINE_OVER_ANGLE_F32: [f32; 5] =
+    [1.0, -0.16666666, 0.0083332425, -0.0001982274, 2.6347564e-06];
 
 /// `cos √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
 pub(super) const COSINE_F64: [f64; 9] = [
@@ -39,14 +34,7 @@ pub(super) const COSINE_F64: [f64; 9] = [
 ];
 
 /// `cos √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
-pub(super) const COSINE_F32: [f32; 6] = [
-    1.0,
-    -0.5,
-    0.04166666,
-    -0.0013888652,
-    2.477458e-05,
-    -2.6297516e-07,
-];
+pub(super) const COSINE_F32: [f32; 6] = [1.0, -0.5, 0.04166666, -0.0013888652, 2.477458e-05, -2.6297516e-07];
 
 /// `atan √y / √y`, 0 ≤ y ≤ tan²(π/8): factors of rising powers.
 pub(super) const ARC_TANGENT_F64: [f64; 13] = [
@@ -63,6 +51,16 @@ pub(super) const ARC_TANGENT_F64: [f64; 13] = [
     0.0455159273578562,
     -0.034570549512274305,
     0.01628574303651472,
+];
+
+/// `θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u ≤ 1: factors of rising powers.
+pub(super) const MIDDLE_RATE_F64: [f64; 6] = [
+    1.0,
+    0.08333516435921424,
+    0.018659212103264843,
+    0.0062749256449246334,
+    0.00013734772811038222,
+    0.002310913866974811,
 ];
 
 /// `θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
@@ -87,19 +85,8 @@ pub(super) const SQUARE_OVER_REST_F64: Quotient<f64, 7, 6> = Quotient {
 };
 
 /// `θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
-pub(super) const SQUARE_OVER_REST_F32: Quotient<f32, 4, 3> = Quotient {
-    above: [
-        64.02327,
-        67.84206,
-        15.455492,
-        0.32054812,
-    ],
-    below: [
-        25.947655,
-        34.58527,
-        12.287759,
-    ],
-};
+pub(super) const SQUARE_OVER_REST_F32: Quotient<f32, 4, 3> =
+    Quotient { above: [64.02327, 67.84206, 15.455492, 0.32054812], below: [25.947655, 34.58527, 12.287759] };
 
 /// `θ/sin θ` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
 pub(super) const ANGLE_OVER_SINE_F64: Quotient<f64, 7, 6> = Quotient {
@@ -124,15 +111,6 @@ pub(super) const ANGLE_OVER_SINE_F64: Quotient<f64, 7, 6> = Quotient {
 
 /// `θ/sin θ` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
 pub(super) const ANGLE_OVER_SINE_F32: Quotient<f32, 4, 3> = Quotient {
-    above: [
-        17.325125,
-        17.854483,
-        3.8039958,
-        0.047282327,
-    ],
-    below: [
-        11.029517,
-        18.38812,
-        8.613247,
-    ],
+    above: [17.325125, 17.854483, 3.8039958, 0.047282327],
+    below: [11.029517, 18.38812, 8.613247],
 };

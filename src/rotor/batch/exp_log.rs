@@ -29,7 +29,7 @@ pub fn exp<F: Real>(level: Level, angles: Parts<'_, F, 3>, out: PartsMut<'_, F, 
 }
 
 #[inline(always)]
-fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], mut out: [&mut Column<F, ROWS>; 4]) {
+fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&mut Column<F, ROWS>; 4]) {
     // (π/2)² and a hair, as far as the polynomials reach.
     let most = F::narrowed(2.467_402);
     let [yz, zx, xy] = angles;

@@ -44,6 +44,12 @@ def arc_tangent(y):
     return mp.mpf(1) if y == 0 else mp.atan(mp.sqrt(y)) / mp.sqrt(y)
 
 
+def middle_rate(u):
+    """θ/(2 sin θ/2) with u = 1 − cos θ: 1 at 0."""
+    angle = mp.acos(1 - u)
+    return mp.mpf(1) if u == 0 else angle / (2 * mp.sin(angle / 2))
+
+
 QUARTER = (mp.pi / 2) ** 2
 EIGHTH_TANGENT = mp.tan(mp.pi / 8) ** 2
 # A hair beyond the range, so that rounding at its end stays inside.
@@ -54,6 +60,7 @@ FITS = [
     ("SINE_OVER_ANGLE", "`sin √y / √y`, 0 ≤ y ≤ (π/2)²", sine_over_angle, QUARTER, 8, 4),
     ("COSINE", "`cos √y`, 0 ≤ y ≤ (π/2)²", cosine, QUARTER, 8, 5),
     ("ARC_TANGENT", "`atan √y / √y`, 0 ≤ y ≤ tan²(π/8)", arc_tangent, EIGHTH_TANGENT, 12, None),
+    ("MIDDLE_RATE", "`θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u ≤ 1", middle_rate, mp.mpf(1), 5, None),
 ]
 
 # name, what it is, function, degree above and below for f64 and f32.

@@ -21,7 +21,7 @@ impl Level {
 
     /// Runs what is inlined into `kernel` with these instructions.
     #[inline]
-    pub(super) fn run(self, kernel: impl FnOnce()) {
+    pub(crate) fn run(self, kernel: impl FnOnce()) {
         match self.0 {
             Some(arch) => arch.dispatch(kernel),
             None => kernel(),

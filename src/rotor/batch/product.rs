@@ -84,6 +84,38 @@ pub fn carry<F: Real>(
     );
 }
 
+/// As [`carry`], for a child whose place relative to its parent is the same in all rows.
+///
+/// # Panics
+/// When the streams differ in length.
+pub fn carry_bone<F: Real>(
+    level: Level,
+    (parent_turn, parent_place): (Parts<'_, F, 4>, Parts<'_, F, 3>),
+    (turn, place): (Parts<'_, F, 4>, [F; 3]),
+    (world_turn, world_place): (PartsMut<'_, F, 4>, PartsMut<'_, F, 3>),
+) {
+    let [p0, p1, p2, p3] = parent_turn;
+    let [px, py, pz] = parent_place;
+    let [t0, t1, t2, t3] = turn;
+    let [w0, w1, w2, w3] = world_turn;
+    let [wx, wy, wz] = world_place;
+    level.run(
+        #[inline(always)]
+        || {
+            each_row(
+                [p0, p1, p2, p3, px, py, pz, t0, t1, t2, t3],
+                [w0, w1, w2, w3, wx, wy, wz],
+                #[inline(always)]
+                |[p0, p1, p2, p3, px, py, pz, t0, t1, t2, t3]: [F; 11]| {
+                    let [s, yz, zx, xy] = product([p0, p1, p2, p3], [t0, t1, t2, t3]);
+                    let [vx, vy, vz] = turned([p0, p1, p2, p3], place);
+                    [s, yz, zx, xy, px + vx, py + vy, pz + vz]
+                },
+            );
+        },
+    );
+}
+
 /// The geometric product.
 #[inline(always)]
 fn product<F: Real>([s, yz, zx, xy]: [F; 4], [os, oyz, ozx, oxy]: [F; 4]) -> [F; 4] {

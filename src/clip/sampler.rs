@@ -1,0 +1,103 @@
+//! Slerp between keys at many places, from streams to streams.
+
+use crate::rotor::batch::{self, Level, PartsMut, Streams};
+
+use super::places::{Column, Places, TILE};
+
+/// Room for what is computed together.
+pub(super) struct Sampler {
+    /// The keys before and behind.
+    ends: [[Column; 4]; 2],
+    shares: Column,
+    between: [Column; 4],
+    own: [Column; 4],
+    /// Which of the places are between two keys.
+    indices: [usize; TILE],
+}
+
+impl Sampler {
+    pub(super) fn new() -> Self {
+        let zero = [0.0; TILE];
+        Self { ends: [[zero; 4]; 2], shares: zero, between: [zero; 4], own: [zero; 4], indices: [0; TILE] }
+    }
+
+    /// The turns at all places, of which there are as many as `out` is long. `keys` are unit, and not none. On a key it is the key's
+    /// own, bit for bit.
+    pub(super) fn sample(&mut self, keys: &Streams<f64, 4>, places: &Places, out: PartsMut<'_, f64, 4>) {
+        if places.are_double {
+            self.sample_double(keys, places, out);
+        } else {
+            self.sample_any(keys, places, out);
+        }
+    }
+
+    /// Where keys and the middles between them take turns nothing has to be looked up.
+    fn sample_double(&mut self, keys: &Streams<f64, 4>, places: &Places, out: PartsMut<'_, f64, 4>) {
+        let len = places.len;
+        let (first, shares) = (places.keys[0], &places.shares[..len]);
+        // 1 when it begins between two keys.
+        let phase = usize::from(shares[0] != 0.0);
+        let middles = (len + phase) / 2;
+        for (own, share) in self.shares.iter_mut().zip(shares[1 - phase..].iter().step_by(2)) {
+            *own = *share;
+        }
+        let parts = keys.parts();
+        batch::slerp_at_middle(
+            Level::best(),
+            parts.map(|stream| &stream[first..first + middles]),
+            parts.map(|stream| &stream[first + 1..first + 1 + middles]),
+            &self.shares[..middles],
+            self.between.each_mut().map(|stream| &mut stream[..middles]),
+        );
+        for ((out, keys), between) in out.into_iter().zip(parts).zip(&self.between) {
+            let keys = &keys[first + phase..first + phase + len - middles];
+            let between = &between[..middles];
+            let (before, behind) = if phase == 0 { (keys, between) } else { (between, keys) };
+            let (pairs, last) = out.as_chunks_mut::<2>();
+            for ((pair, before), behind) in pairs.iter_mut().zip(before).zip(behind) {
+                *pair = [*before, *behind];
+            }
+            if let [last] = last {
+                *last = before[len / 2];
+            }
+        }
+    }
+
+    fn sample_any(&mut self, keys: &Streams<f64, 4>, places: &Places, out: PartsMut<'_, f64, 4>) {
+        let len = places.len;
+        let count = keys.len();
+        let parts = keys.parts().map(|stream| &stream[..count]);
+        let last = count - 1;
+        let rows = places.keys[..len].iter().zip(&places.shares);
+        let (own, [from, to]) = (&mut self.own, &mut self.ends);
+        let mut count = 0;
+        for (index, (&key, &share)) in rows.enumerate() {
+            // Both are below `TILE` anyway; this lets the compiler know.
+            let (index, row) = (index % TILE, count % TILE);
+            let next = (key + 1).min(last);
+            for part in 0..4 {
+                let at = parts[part][key];
+                own[part][index] = at;
+                from[part][row] = at;
+                to[part][row] = parts[part][next];
+            }
+            self.shares[row] = share;
+            self.indices[row] = index;
+            // On a key the row is written over by the next.
+            count += usize::from(share != 0.0);
+        }
+        let [from, to] = self.ends.each_ref().map(|tile| tile.each_ref().map(|stream| &stream[..count]));
+        let between = self.between.each_mut().map(|stream| &mut stream[..count]);
+        batch::slerp(Level::best(), from, to, &self.shares[..count], between);
+        for ((out, own), between) in out.into_iter().zip(&mut self.own).zip(&self.between) {
+            if count == len {
+                out.copy_from_slice(&between[..len]);
+                continue;
+            }
+            for (&index, part) in self.indices[..count].iter().zip(between) {
+                own[index % TILE] = *part;
+            }
+            out.copy_from_slice(&own[..len]);
+        }
+    }
+}
