@@ -22,7 +22,7 @@ impl RotationTrack {
     pub fn at_all_by(&self, times_secs: &[f64], path: Option<PathKind>) -> Vec<Rotor> {
         let keys = self.sound_for(times_secs.len());
         if let Some(keys) = keys
-            && self.is_plain(path)
+            && self.is_slerp_alone(path)
         {
             return self.plain_at(keys, times_secs);
         }
@@ -106,7 +106,7 @@ impl RotationTrack {
     }
 
     /// Whether it has keys, and every segment goes the short way evenly by slerp.
-    pub(super) fn is_plain(&self, path: Option<PathKind>) -> bool {
+    pub(super) fn is_slerp_alone(&self, path: Option<PathKind>) -> bool {
         let kind = match (path, &self.paths) {
             (Some(kind), _) => Some(kind),
             (None, Paths::Every(kind)) => Some(*kind),

@@ -80,7 +80,6 @@ impl Places {
 }
 
 /// Without branches, so that several are found at once.
-#[expect(clippy::inline_always, reason = "as a function of its own it is built for the baseline")]
 #[inline(always)]
 fn fill_even(step_secs: f64, last: f64, times_secs: &Column, keys: &mut [usize; TILE], shares: &mut Column) {
     /// Adding it leaves no room for a fraction, and the whole number stands in the last bits.
@@ -98,8 +97,8 @@ fn fill_even(step_secs: f64, last: f64, times_secs: &Column, keys: &mut [usize; 
         let before = if before < last { before } else { last };
         let (start, end) = (before * step_secs, (before + 1.0) * step_secs);
         let (past, left, near) = (secs - start, end - secs, ROUNDING * secs);
-        let is_behind = (left <= near) & (left < past);
-        let is_on = is_behind | (past <= near);
+        let is_behind = left <= near && left < past;
+        let is_on = is_behind || past <= near;
         let before = if is_behind { before + 1.0 } else { before };
         keys[index] = ((before + TO_WHOLE).to_bits() & ((1 << 52) - 1)) as usize;
         shares[index] = if is_on { 0.0 } else { past / (end - start) };

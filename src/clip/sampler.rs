@@ -37,7 +37,7 @@ impl Sampler {
         let (first, shares) = (places.keys[0], &places.shares[..len]);
         // 1 when it begins between two keys.
         let phase = usize::from(shares[0] != 0.0);
-        let middles = (len + phase) / 2;
+        let middles = usize::midpoint(len, phase);
         for (own, share) in self.shares.iter_mut().zip(shares[1 - phase..].iter().step_by(2)) {
             *own = *share;
         }

@@ -178,7 +178,8 @@ impl<'a> Sampling<'a> {
             }
             return;
         };
-        let Some(keys) = track.sound_for(self.times_secs.len()).filter(|_| track.is_plain(self.path)) else {
+        let Some(keys) = track.sound_for(self.times_secs.len()).filter(|_| track.is_slerp_alone(self.path))
+        else {
             for (row, turn) in track.at_all_by(self.times_secs, self.path).into_iter().enumerate() {
                 out.set(row, parts(turn));
             }

@@ -1,7 +1,7 @@
 //! How long does it take to play a clip at another rate, and to place its joints in the scene?
 //!
-//! `cargo bench --no-default-features --bench clip`. One thread, time of the processor, `f64`; the peer does the same work with `glam` and nothing
-//! around it. Ours is the code that the commands run, from `Clip` to `Rotor`s and places.
+//! `cargo bench --no-default-features --bench clip`. One thread, time of the processor, `f64` but where it says `f32`; the peer does the same work with `glam`
+//! and nothing around it. Ours is the code that the commands run, from `Clip` to `Rotor`s and places.
 
 mod cpu_time;
 
@@ -11,12 +11,14 @@ use std::time::Duration;
 
 use cpu_time::CpuTime;
 use criterion::{Throughput, criterion_group, criterion_main};
-use glam::{DQuat, DVec3};
+use glam::{DQuat, DVec3, Quat, Vec3};
 use turnwright::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times};
+use turnwright::rotor::batch::{self, Level, Real, Streams};
 use turnwright::rotor::{Bivector, Rotor};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 type Criterion = criterion::Criterion<CpuTime>;
+type Group<'a> = criterion::BenchmarkGroup<'a, CpuTime>;
 
 const JOINTS: usize = 65;
 const FRAMES: usize = 2000;
@@ -24,23 +26,28 @@ const RATE: f64 = 60.0;
 /// As many times as the commands take at once.
 const TIMES_AT_ONCE: usize = 256;
 
+fn place(joint: usize) -> DVec3 {
+    DVec3::new(0.1, 0.4, 0.02 * joint as f64)
+}
+
+fn turn(frame: usize, joint: usize) -> Rotor {
+    let (i, j) = (frame as f64 * 0.03, joint as f64);
+    Rotor::from_plane_angles(Bivector::new((i + j).sin(), (1.3 * i).cos(), (0.7 * i + j).sin()))
+}
+
 /// A tree of joints that all turn to and fro, each in its own way.
 fn clip() -> Clip {
     let joint = |number: usize| Joint {
         name: format!("J{number}"),
         number,
-        parent: number.checked_sub(1).map(|before| before - before % 4),
-        rest: Transform::from_translation(DVec3::new(0.1, 0.4, 0.02 * number as f64)),
+        parent: parent(number),
+        rest: Transform::from_translation(place(number)),
         kind: JointKind::Joint,
         tips: vec![],
     };
     let times = Times::Even { step_secs: 1.0 / RATE, count: FRAMES };
     let tracks = (0..JOINTS).map(|joint| {
-        let turn = |frame: usize| {
-            let (i, j) = (frame as f64 * 0.03, joint as f64);
-            Rotor::from_plane_angles(Bivector::new((i + j).sin(), (1.3 * i).cos(), (0.7 * i + j).sin()))
-        };
-        let keys: Vec<Rotor> = (0..FRAMES).map(turn).collect();
+        let keys: Vec<Rotor> = (0..FRAMES).map(|frame| turn(frame, joint)).collect();
         let rotation = Some(RotationTrack::from_rotors(times.clone(), keys));
         Arc::new(JointTracks { rotation, ..JointTracks::default() })
     });
@@ -82,6 +89,15 @@ fn play(criterion: &mut Criterion) {
             }
         });
     });
+    group.bench_function("ours, keys made unit first", |bencher| {
+        bencher.iter(|| {
+            for joint in 0..JOINTS {
+                let track = clip.rotation(joint).expect("every joint turns");
+                let track = RotationTrack { keys: track.keys.to_vec().into(), ..track.clone() };
+                black_box(track.at_all(black_box(&times)));
+            }
+        });
+    });
     group.bench_function("ours, one by one", |bencher| {
         bencher.iter(|| {
             for joint in 0..JOINTS {
@@ -100,7 +116,7 @@ fn play(criterion: &mut Criterion) {
     group.finish();
 }
 
-fn place(criterion: &mut Criterion) {
+fn play_and_place(criterion: &mut Criterion) {
     let clip = clip();
     let times: Vec<f64> = (0..2 * FRAMES - 1).map(|frame| frame as f64 / (2.0 * RATE)).collect();
     let keys = peer_keys(&clip);
@@ -140,9 +156,113 @@ fn place(criterion: &mut Criterion) {
     group.finish();
 }
 
+/// The joint's parent, which comes before it.
+fn parent(joint: usize) -> Option<usize> {
+    joint.checked_sub(1).map(|before| before - before % 4)
+}
+
+/// Forward kinematics alone, of 10,000 frames that lie in memory: turns in, turns and places out.
+fn kinematics<F: Real>(
+    criterion: &mut Criterion,
+    name: &str,
+    narrowed: impl Fn(f64) -> F + Copy,
+    glam: impl FnOnce(&mut Group<'_>),
+) {
+    const FRAMES_AT_ONCE: usize = 256;
+    let tiles = KINEMATIC_FRAMES.div_ceil(FRAMES_AT_ONCE);
+    let mut group = criterion.benchmark_group(format!("place in the scene {name}"));
+    group.throughput(Throughput::Elements((JOINTS * KINEMATIC_FRAMES) as u64)).sample_size(10);
+    group.warm_up_time(Duration::from_millis(300)).measurement_time(Duration::from_secs(2));
+    let turns: Vec<Vec<Streams<F, 4>>> = (0..tiles)
+        .map(|tile| {
+            let frames = FRAMES_AT_ONCE.min(KINEMATIC_FRAMES - tile * FRAMES_AT_ONCE);
+            let rows = |joint: usize| {
+                Streams::from_rows((0..frames).map(|frame| {
+                    let turn = turn(tile * FRAMES_AT_ONCE + frame, joint);
+                    [turn.s, turn.yz, turn.zx, turn.xy].map(narrowed)
+                }))
+            };
+            (0..JOINTS).map(rows).collect()
+        })
+        .collect();
+    let places: Vec<[F; 3]> = (0..JOINTS).map(|joint| place(joint).to_array().map(narrowed)).collect();
+    let mut worlds: Vec<Vec<(Streams<F, 4>, Streams<F, 3>)>> = turns
+        .iter()
+        .map(|tile| {
+            tile.iter().map(|turns| (Streams::zeros(turns.len()), Streams::zeros(turns.len()))).collect()
+        })
+        .collect();
+    for (name, level) in [("ours, baseline", Level::baseline()), ("ours", Level::best())] {
+        group.bench_function(name, |bencher| {
+            bencher.iter(|| {
+                for (turns, worlds) in black_box(&turns).iter().zip(&mut worlds) {
+                    for joint in 0..JOINTS {
+                        let (above, own) = worlds.split_at_mut(joint);
+                        let (own_turn, own_place) = &mut own[0];
+                        let Some((turn, at)) = parent(joint).map(|parent| &above[parent]) else {
+                            own_turn.clone_from(&turns[joint]);
+                            for (stream, part) in own_place.parts_mut().into_iter().zip(places[joint]) {
+                                stream.fill(part);
+                            }
+                            continue;
+                        };
+                        batch::carry_bone(
+                            level,
+                            (turn.parts(), at.parts()),
+                            (turns[joint].parts(), places[joint]),
+                            (own_turn.parts_mut(), own_place.parts_mut()),
+                        );
+                    }
+                }
+                black_box(&mut worlds);
+            });
+        });
+    }
+    glam(&mut group);
+    group.finish();
+}
+
+const KINEMATIC_FRAMES: usize = 10_000;
+
+macro_rules! glam_kinematics {
+    ($quat:ty, $vec:ty, $turn:expr, $place:expr) => {
+        |group: &mut Group<'_>| {
+            let frames = 0..KINEMATIC_FRAMES;
+            let turns: Vec<$quat> =
+                frames.flat_map(|frame| (0..JOINTS).map(move |joint| $turn(turn(frame, joint)))).collect();
+            let places: Vec<$vec> = (0..JOINTS).map(|joint| $place(place(joint))).collect();
+            let parents: Vec<Option<usize>> = (0..JOINTS).map(parent).collect();
+            let mut worlds = vec![(<$quat>::IDENTITY, <$vec>::ZERO); turns.len()];
+            group.bench_function("glam", |bencher| {
+                bencher.iter(|| {
+                    let frames = black_box(&turns).chunks_exact(JOINTS);
+                    for (turns, world) in frames.zip(worlds.chunks_exact_mut(JOINTS)) {
+                        for joint in 0..JOINTS {
+                            world[joint] = match parents[joint].map(|parent| world[parent]) {
+                                Some((turn, at)) => (turn * turns[joint], at + turn * places[joint]),
+                                None => (turns[joint], places[joint]),
+                            };
+                        }
+                    }
+                    black_box(&mut worlds);
+                });
+            });
+        }
+    };
+}
+
+fn kinematics_alone(criterion: &mut Criterion) {
+    let narrow = |turn: Rotor| Quat::from_array(turn.to_xyzw().map(|part| part as f32));
+    let wide = |turn: Rotor| DQuat::from_array(turn.to_xyzw());
+    let glam = glam_kinematics!(Quat, Vec3, narrow, |place: DVec3| place.as_vec3());
+    kinematics(criterion, "f32", |part| part as f32, glam);
+    let glam = glam_kinematics!(DQuat, DVec3, wide, |place: DVec3| place);
+    kinematics(criterion, "f64", |part| part, glam);
+}
+
 criterion_group! {
     name = benches;
     config = criterion::Criterion::default().with_measurement(CpuTime);
-    targets = play, place
+    targets = play, play_and_place, kinematics_alone
 }
 criterion_main!(benches);

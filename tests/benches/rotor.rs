@@ -12,12 +12,15 @@ use criterion::{BenchmarkGroup, Throughput, criterion_group, criterion_main};
 use glam::{DQuat, DVec3, EulerRot, Quat, Vec3};
 use nalgebra::{UnitQuaternion, Vector3};
 use turnwright::rotor::batch::{self, Level, Real, Streams};
-use turnwright::rotor::{Axis, Bivector, EulerOrder, Rotor};
+use turnwright::rotor::{Axis, Bivector, EndRates, EulerOrder, RotationSpline, Rotor};
 use ultraviolet::interp::Slerp;
 use ultraviolet::{DRotor3, DVec3 as UDVec3, Rotor3, Vec3 as UVec3};
 
-/// Many more than fit any cache near a core.
-const COUNT: usize = 1_000_000;
+/// Many more than fit any cache near a core; `ROTATIONS=2048 cargo bench …` tells what the kernels take without waiting for memory.
+/// (The peers gain more than they should there: the processor learns the way through their branches by heart.)
+fn count() -> usize {
+    std::env::var("ROTATIONS").ok().and_then(|count| count.parse().ok()).unwrap_or(1_000_000)
+}
 
 const LEVELS: [&str; 2] = ["ours, baseline", "ours"];
 
@@ -37,11 +40,11 @@ impl Numbers {
 
     fn rotors(&mut self) -> Vec<Rotor> {
         let part = |numbers: &mut Self| numbers.next() - 0.5;
-        (0..COUNT).map(|_| Rotor::new(part(self), part(self), part(self), part(self)).normalize()).collect()
+        (0..count()).map(|_| Rotor::new(part(self), part(self), part(self), part(self)).normalize()).collect()
     }
 
     fn angles(&mut self) -> Vec<[f64; 3]> {
-        (0..COUNT).map(|_| std::array::from_fn(|_| 3.6 * (self.next() - 0.5))).collect()
+        (0..count()).map(|_| std::array::from_fn(|_| 3.6 * (self.next() - 0.5))).collect()
     }
 }
 
@@ -81,7 +84,7 @@ type Group<'a> = BenchmarkGroup<'a, CpuTime>;
 
 fn group<'a>(criterion: &'a mut Criterion, name: &str) -> Group<'a> {
     let mut group = criterion.benchmark_group(name);
-    group.throughput(Throughput::Elements(COUNT as u64)).sample_size(10);
+    group.throughput(Throughput::Elements(count() as u64)).sample_size(10);
     group.warm_up_time(std::time::Duration::from_millis(300));
     group.measurement_time(std::time::Duration::from_millis(1500));
     group
@@ -102,7 +105,7 @@ fn peer<A, T: Clone>(group: &mut Group<'_>, name: &str, arguments: &[A], zero: T
 
 /// One of our kernels at both levels.
 fn ours<F: Real, const N: usize>(group: &mut Group<'_>, mut kernel: impl FnMut(Level, &mut Streams<F, N>)) {
-    let mut out = Streams::zeros(COUNT);
+    let mut out = Streams::zeros(count());
     for name in LEVELS {
         group.bench_function(name, |bencher| bencher.iter(|| kernel(level(name), black_box(&mut out))));
     }
@@ -115,22 +118,12 @@ fn triples<T: Clone>(a: &[T], b: &[T], t: &[f64]) -> Vec<(T, T, f64)> {
 fn slerp(criterion: &mut Criterion) {
     let mut numbers = Numbers(1);
     let (a, b) = (numbers.rotors(), numbers.rotors());
-    let t: Vec<f64> = (0..COUNT).map(|_| numbers.next()).collect();
+    let t: Vec<f64> = (0..count()).map(|_| numbers.next()).collect();
     let narrow: Vec<f32> = t.iter().map(|t| *t as f32).collect();
 
     let mut group = group(criterion, "slerp f32");
     let (from, to) = (streams(&a, |part| part as f32), streams(&b, |part| part as f32));
-    // What a copy of the same bytes costs: nine streams read, four written.
-    let mut copies = (Streams::<f32, 4>::zeros(COUNT), 0.0_f32);
-    group.bench_function("reading and copying the same bytes", |bencher| {
-        bencher.iter(|| {
-            for (out, part) in copies.0.parts_mut().into_iter().zip(black_box(&from).parts()) {
-                out.copy_from_slice(part);
-            }
-            copies.1 = to.parts().into_iter().chain([&narrow[..]]).map(sum).sum();
-            black_box(&mut copies);
-        });
-    });
+    copy(&mut group, &[&from.parts()[..], &to.parts(), &[&narrow]].concat(), 4);
     ours(&mut group, |level, out| batch::slerp(level, from.parts(), to.parts(), &narrow, out.parts_mut()));
     let pairs = triples(&glam_f32(&a), &glam_f32(&b), &t);
     peer(&mut group, "glam", &pairs, Quat::IDENTITY, |(a, b, t)| a.slerp(*b, *t as f32));
@@ -142,16 +135,7 @@ fn slerp(criterion: &mut Criterion) {
 
     let mut group = self::group(criterion, "slerp f64");
     let (from, to) = (streams(&a, |part| part), streams(&b, |part| part));
-    let mut copies = (Streams::<f64, 4>::zeros(COUNT), 0.0_f64);
-    group.bench_function("reading and copying the same bytes", |bencher| {
-        bencher.iter(|| {
-            for (out, part) in copies.0.parts_mut().into_iter().zip(black_box(&from).parts()) {
-                out.copy_from_slice(part);
-            }
-            copies.1 = to.parts().into_iter().chain([&t[..]]).map(sum).sum();
-            black_box(&mut copies);
-        });
-    });
+    copy(&mut group, &[&from.parts()[..], &to.parts(), &[&t]].concat(), 4);
     ours(&mut group, |level, out| batch::slerp(level, from.parts(), to.parts(), &t, out.parts_mut()));
     let pairs = triples(&glam_f64(&a), &glam_f64(&b), &t);
     peer(&mut group, "glam", &pairs, DQuat::IDENTITY, |(a, b, t)| a.slerp(*b, *t));
@@ -160,6 +144,21 @@ fn slerp(criterion: &mut Criterion) {
     let pairs = triples(&ultraviolet_f64(&a), &ultraviolet_f64(&b), &t);
     peer(&mut group, "ultraviolet", &pairs, DRotor3::identity(), |(a, b, t)| a.slerp(*b, *t));
     group.finish();
+}
+
+/// What it costs to read and write the same bytes: of the streams read some are copied, the rest summed.
+fn copy<F: Real>(group: &mut Group<'_>, read: &[&[F]], written: usize) {
+    let mut copies = vec![vec![F::ZERO; count()]; written];
+    group.bench_function("reading and copying the same bytes", |bencher| {
+        bencher.iter(|| {
+            let (copied, summed) = black_box(read).split_at(written.min(read.len()));
+            for (index, copy) in copies.iter_mut().enumerate() {
+                copy.copy_from_slice(copied[index % copied.len()]);
+            }
+            black_box(&mut copies);
+            black_box(summed.iter().fold(F::ZERO, |all, stream| all + sum(stream)));
+        });
+    });
 }
 
 /// Reads a stream as fast as memory gives it.
@@ -183,7 +182,7 @@ fn squad(criterion: &mut Criterion) {
     let b: Vec<Rotor> = a.iter().map(|a| near(&mut numbers, a, 1.5)).collect();
     let inner_a: Vec<Rotor> = a.iter().map(|a| near(&mut numbers, a, 0.2)).collect();
     let inner_b: Vec<Rotor> = b.iter().map(|b| near(&mut numbers, b, 0.2)).collect();
-    let t: Vec<f64> = (0..COUNT).map(|_| numbers.next()).collect();
+    let t: Vec<f64> = (0..count()).map(|_| numbers.next()).collect();
     let narrow: Vec<f32> = t.iter().map(|t| *t as f32).collect();
     let four = [&a, &inner_a, &inner_b, &b];
 
@@ -231,6 +230,7 @@ fn exp_and_log(criterion: &mut Criterion) {
 
     let mut group = group(criterion, "exp f32");
     let rows = Streams::from_rows(angles.iter().map(|angles| angles.map(|part| part as f32)));
+    copy(&mut group, &rows.parts(), 4);
     ours(&mut group, |level, out| batch::exp(level, rows.parts(), out.parts_mut()));
     let vectors: Vec<Vec3> = angles.iter().map(|a| DVec3::from_array(*a).as_vec3()).collect();
     peer(&mut group, "glam", &vectors, Quat::IDENTITY, |v| Quat::from_scaled_axis(*v));
@@ -240,6 +240,7 @@ fn exp_and_log(criterion: &mut Criterion) {
 
     let mut group = self::group(criterion, "exp f64");
     let rows = Streams::from_rows(angles.iter().copied());
+    copy(&mut group, &rows.parts(), 4);
     ours(&mut group, |level, out| batch::exp(level, rows.parts(), out.parts_mut()));
     let vectors: Vec<DVec3> = angles.iter().map(|a| DVec3::from_array(*a)).collect();
     peer(&mut group, "glam", &vectors, DQuat::IDENTITY, |v| DQuat::from_scaled_axis(*v));
@@ -249,6 +250,7 @@ fn exp_and_log(criterion: &mut Criterion) {
 
     let mut group = self::group(criterion, "log f32");
     let rows = streams(&rotors, |part| part as f32);
+    copy(&mut group, &rows.parts(), 3);
     ours(&mut group, |level, out| batch::log(level, rows.parts(), out.parts_mut()));
     peer(&mut group, "glam", &glam_f32(&rotors), Vec3::ZERO, |q| q.to_scaled_axis());
     peer(&mut group, "nalgebra", &nalgebra_f32(&rotors), Vector3::zeros(), UnitQuaternion::scaled_axis);
@@ -256,6 +258,7 @@ fn exp_and_log(criterion: &mut Criterion) {
 
     let mut group = self::group(criterion, "log f64");
     let rows = streams(&rotors, |part| part);
+    copy(&mut group, &rows.parts(), 3);
     ours(&mut group, |level, out| batch::log(level, rows.parts(), out.parts_mut()));
     peer(&mut group, "glam", &glam_f64(&rotors), DVec3::ZERO, |q| q.to_scaled_axis());
     peer(&mut group, "nalgebra", &nalgebra_f64(&rotors), Vector3::zeros(), UnitQuaternion::scaled_axis);
@@ -300,13 +303,13 @@ fn products(criterion: &mut Criterion) {
     let (left, right) = (streams(&a, |part| part as f32), streams(&b, |part| part as f32));
     ours(&mut group, |level, out| batch::compose(level, left.parts(), right.parts(), out.parts_mut()));
     let (glam_a, glam_b) = (glam_f32(&a), glam_f32(&b));
-    let both: Vec<(Quat, Quat)> = pairs(COUNT).map(|(i, j)| (glam_a[i], glam_b[j])).collect();
+    let both: Vec<(Quat, Quat)> = pairs(count()).map(|(i, j)| (glam_a[i], glam_b[j])).collect();
     peer(&mut group, "glam", &both, Quat::IDENTITY, |(a, b)| *a * *b);
     let (nalgebra_a, nalgebra_b) = (nalgebra_f32(&a), nalgebra_f32(&b));
-    let both: Vec<_> = pairs(COUNT).map(|(i, j)| (nalgebra_a[i], nalgebra_b[j])).collect();
+    let both: Vec<_> = pairs(count()).map(|(i, j)| (nalgebra_a[i], nalgebra_b[j])).collect();
     peer(&mut group, "nalgebra", &both, UnitQuaternion::identity(), |(a, b)| a * b);
     let (ultraviolet_a, ultraviolet_b) = (ultraviolet_f32(&a), ultraviolet_f32(&b));
-    let both: Vec<_> = pairs(COUNT).map(|(i, j)| (ultraviolet_a[i], ultraviolet_b[j])).collect();
+    let both: Vec<_> = pairs(count()).map(|(i, j)| (ultraviolet_a[i], ultraviolet_b[j])).collect();
     peer(&mut group, "ultraviolet", &both, Rotor3::identity(), |(a, b)| *a * *b);
     group.finish();
 
@@ -314,13 +317,13 @@ fn products(criterion: &mut Criterion) {
     let points = Streams::from_rows(places.iter().map(|place| place.map(|part| part as f32)));
     ours(&mut group, |level, out| batch::apply(level, left.parts(), points.parts(), out.parts_mut()));
     let vectors: Vec<Vec3> = places.iter().map(|place| DVec3::from_array(*place).as_vec3()).collect();
-    let both: Vec<_> = pairs(COUNT).map(|(i, j)| (glam_a[i], vectors[j])).collect();
+    let both: Vec<_> = pairs(count()).map(|(i, j)| (glam_a[i], vectors[j])).collect();
     peer(&mut group, "glam", &both, Vec3::ZERO, |(q, v)| *q * *v);
     let both: Vec<_> =
-        pairs(COUNT).map(|(i, j)| (nalgebra_a[i], Vector3::from(vectors[j].to_array()))).collect();
+        pairs(count()).map(|(i, j)| (nalgebra_a[i], Vector3::from(vectors[j].to_array()))).collect();
     peer(&mut group, "nalgebra", &both, Vector3::zeros(), |(q, v)| q * v);
     let both: Vec<_> =
-        pairs(COUNT).map(|(i, j)| (ultraviolet_a[i], UVec3::from(vectors[j].to_array()))).collect();
+        pairs(count()).map(|(i, j)| (ultraviolet_a[i], UVec3::from(vectors[j].to_array()))).collect();
     peer(&mut group, "ultraviolet", &both, UVec3::zero(), |(r, v)| *r * *v);
     group.finish();
 
@@ -328,20 +331,43 @@ fn products(criterion: &mut Criterion) {
     let (left, points) = (streams(&a, |part| part), Streams::from_rows(places.iter().copied()));
     ours(&mut group, |level, out| batch::apply(level, left.parts(), points.parts(), out.parts_mut()));
     let glam_a = glam_f64(&a);
-    let both: Vec<_> = pairs(COUNT).map(|(i, j)| (glam_a[i], DVec3::from_array(places[j]))).collect();
+    let both: Vec<_> = pairs(count()).map(|(i, j)| (glam_a[i], DVec3::from_array(places[j]))).collect();
     peer(&mut group, "glam", &both, DVec3::ZERO, |(q, v)| *q * *v);
     let nalgebra_a = nalgebra_f64(&a);
-    let both: Vec<_> = pairs(COUNT).map(|(i, j)| (nalgebra_a[i], Vector3::from(places[j]))).collect();
+    let both: Vec<_> = pairs(count()).map(|(i, j)| (nalgebra_a[i], Vector3::from(places[j]))).collect();
     peer(&mut group, "nalgebra", &both, Vector3::zeros(), |(q, v)| q * v);
     let ultraviolet_a = ultraviolet_f64(&a);
-    let both: Vec<_> = pairs(COUNT).map(|(i, j)| (ultraviolet_a[i], UDVec3::from(places[j]))).collect();
+    let both: Vec<_> = pairs(count()).map(|(i, j)| (ultraviolet_a[i], UDVec3::from(places[j]))).collect();
     peer(&mut group, "ultraviolet", &both, UDVec3::zero(), |(r, v)| *r * *v);
+    group.finish();
+}
+
+/// The peer is scipy: `tests/benches/scipy_spline.py` prints its times for the same keys.
+fn spline(criterion: &mut Criterion) {
+    const KEYS: u32 = 1000;
+    const TIMES: u32 = 100_000;
+    let secs: Vec<f64> = (0..KEYS).map(|key| f64::from(key) * 0.1 + f64::from(key % 3) * 0.02).collect();
+    let turn =
+        |key: f64| Bivector::new((0.4 * key).sin(), 0.7 * (0.53 * key).cos(), 0.4 * (0.31 * key).cos());
+    let keys: Vec<Rotor> = (0..KEYS).map(|key| Rotor::from_plane_angles(turn(f64::from(key)))).collect();
+    let build = || RotationSpline::new(black_box(&secs), &keys, EndRates::Secant).expect("sound keys");
+    let mut group = group(criterion, "C2 spline");
+    group.throughput(Throughput::Elements(u64::from(KEYS)));
+    group.bench_function("build", |bencher| bencher.iter(build));
+    let spline = build();
+    let step = secs[secs.len() - 1] / f64::from(TIMES);
+    let asked: Vec<f64> = (0..TIMES).map(|time| f64::from(time) * step).collect();
+    group.throughput(Throughput::Elements(u64::from(TIMES)));
+    group.bench_function("evaluate", |bencher| bencher.iter(|| spline.at_all(black_box(&asked))));
+    group.bench_function("evaluate one by one", |bencher| {
+        bencher.iter(|| black_box(&asked).iter().map(|&secs| spline.at(secs)).collect::<Vec<_>>());
+    });
     group.finish();
 }
 
 criterion_group! {
     name = benches;
     config = criterion::Criterion::default().with_measurement(CpuTime);
-    targets = slerp, squad, exp_and_log, euler, products
+    targets = slerp, squad, exp_and_log, euler, products, spline
 }
 criterion_main!(benches);

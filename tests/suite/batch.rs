@@ -1,6 +1,6 @@
 use serde_json::Value;
 use turnwright::rotor::batch::{self, Level, Real, Streams};
-use turnwright::rotor::{Axis, Bivector, EulerOrder, Rotor, slerp, squad};
+use turnwright::rotor::{Axis, Bivector, EndRates, EulerOrder, RotationSpline, Rotor, slerp, squad};
 
 use crate::support::{Distance, Tally, list, number, numbers};
 
@@ -228,6 +228,78 @@ fn bulk_squad_goes_wherever_squad_goes() {
 }
 
 #[test]
+fn near_the_middle_the_short_form_is_slerp() {
+    let mut numbers = Numbers(6);
+    let a = numbers.rotors(1000);
+    let mut b = numbers.rotors(1000);
+    // The hard places: equal, opposite, nearly so, and half a turn apart.
+    for (row, off) in [0.0, 1e-15, 1e-9, 1e-4].into_iter().enumerate() {
+        let near = Rotor::from_plane_angles(Bivector::new(off, 0.0, off));
+        (b[2 * row], b[2 * row + 1]) = (a[2 * row] * near, -(a[2 * row + 1] * near));
+    }
+    b[8] = a[8] * Rotor::new(0.0, 0.0, 1.0, 0.0);
+    let t: Vec<f64> =
+        (0..1000).map(|row| 0.5 + if row % 2 == 0 { 1e-10 * numbers.next() } else { 0.0 }).collect();
+    for (name, level) in LEVELS {
+        let mut out = Streams::zeros(1000);
+        batch::slerp_at_middle(level(), rows(&a).parts(), rows(&b).parts(), &t, out.parts_mut());
+        for row in 0..1000 {
+            let (found, exact) = (rotor(out.get(row)), slerp(a[row], b[row], t[row]));
+            // Halfway round a half turn either way is right.
+            let is_either = row == 8 && a[row].dot(b[row]).abs() < 1e-15;
+            let error = found.distance_to(&exact);
+            assert!(error < 1.5e-15 || is_either, "{name} row {row}: {error:e}");
+            assert!((found.norm() - 1.0).abs() < 1e-15, "{name} row {row}");
+        }
+    }
+}
+
+#[test]
+fn carrying_is_the_product_and_the_place_in_the_parents_frame() {
+    let mut numbers = Numbers(7);
+    let (parents, turns) = (numbers.rotors(200), numbers.rotors(200));
+    let mut points =
+        || -> Vec<[f64; 3]> { (0..200).map(|_| std::array::from_fn(|_| numbers.next())).collect() };
+    let (at, places) = (points(), points());
+    let (above, at_rows) = (rows(&parents), Streams::from_rows(at.iter().copied()));
+    let (own, place_rows) = (rows(&turns), Streams::from_rows(places.iter().copied()));
+    for (name, level) in LEVELS {
+        let (mut turned, mut placed) = (Streams::zeros(200), Streams::zeros(200));
+        let parent = (above.parts(), at_rows.parts());
+        let world = (turned.parts_mut(), placed.parts_mut());
+        batch::carry(level(), parent, (own.parts(), place_rows.parts()), world);
+        let (mut same_turned, mut same_placed) = (Streams::zeros(200), Streams::zeros(200));
+        let world = (same_turned.parts_mut(), same_placed.parts_mut());
+        batch::carry_bone(level(), parent, (own.parts(), places[0]), world);
+        for row in 0..200 {
+            let exact =
+                |place: [f64; 3]| (glam::DVec3::from(at[row]) + parents[row].apply(place.into())).to_array();
+            assert_eq!(rotor(turned.get(row)), parents[row] * turns[row], "{name} row {row}");
+            assert_eq!(same_turned.get(row), turned.get(row), "{name} row {row}");
+            assert!(placed.get(row).distance_to(&exact(places[row])) < 2e-15, "{name} row {row}");
+            assert!(same_placed.get(row).distance_to(&exact(places[0])) < 2e-15, "{name} row {row}");
+        }
+    }
+}
+
+#[test]
+fn a_spline_at_many_times_is_the_spline_at_each() {
+    let secs: Vec<f64> = (0..50).map(|key| f64::from(key) * 0.1 + f64::from(key % 3) * 0.02).collect();
+    let turn = |key: f64| Bivector::new(key.sin(), 0.7 * (1.3 * key).cos(), 0.4 * key.cos());
+    let keys: Vec<Rotor> = (0..50).map(|key| Rotor::from_plane_angles(turn(f64::from(key)))).collect();
+    let spline = RotationSpline::new(&secs, &keys, EndRates::Secant).unwrap();
+    let mut asked: Vec<f64> = (-10..600).map(|step| f64::from(step) * 0.01).collect();
+    asked.extend([4.0, 0.3, f64::NAN, 2.2, f64::INFINITY, f64::NEG_INFINITY]);
+    asked.extend(&secs);
+    let found = spline.at_all(&asked);
+    assert_eq!(found.len(), asked.len());
+    for (found, secs) in found.iter().zip(asked) {
+        let error = found.distance_to(&spline.at(secs));
+        assert!(error < 2e-15, "at {secs}: {error:e}");
+    }
+}
+
+#[test]
 fn euler_kernels_agree_in_all_orders() {
     let mut numbers = Numbers(3);
     for order in EulerOrder::ALL {
@@ -296,6 +368,10 @@ fn both_levels_give_the_same_bits() {
     bits(|level, out: &mut Streams<f64, 4>| batch::slerp(level, a.parts(), b.parts(), &t, out.parts_mut()));
     bits(|level, out: &mut Streams<f64, 4>| {
         batch::squad(level, [a.parts(), inner_a.parts(), inner_b.parts(), b.parts()], &t, out.parts_mut());
+    });
+    let middles: Vec<f64> = t.iter().map(|t| 0.5 + 1e-11 * t).collect();
+    bits(|level, out: &mut Streams<f64, 4>| {
+        batch::slerp_at_middle(level, a.parts(), b.parts(), &middles, out.parts_mut());
     });
     bits(|level, out: &mut Streams<f64, 4>| batch::exp(level, angles.parts(), out.parts_mut()));
     bits(|level, out: &mut Streams<f64, 3>| batch::log(level, a.parts(), out.parts_mut()));

@@ -31,9 +31,7 @@ pub(super) fn each_row<F: Real, const I: usize, const O: usize>(
             } else {
                 fill(block, found.each_mut(), &lane);
                 for (column, found) in out.into_iter().zip(&found) {
-                    for row in 0..BLOCK {
-                        column[row] = found[row];
-                    }
+                    *column = *found;
                 }
             }
         },
@@ -63,7 +61,7 @@ fn fill<F: Real, const I: usize, const O: usize>(
 pub(super) fn mend_rare<F: Real, const I: usize, const O: usize, const ROWS: usize>(
     guards: &Column<F, ROWS>,
     block: [&Column<F, ROWS>; I],
-    mut found: [&mut Column<F, ROWS>; O],
+    found: [&mut Column<F, ROWS>; O],
     exact: &impl Fn([F; I]) -> [F; O],
 ) {
     if guards.iter().fold(false, |any, guard| any | is_rare(*guard)) {
