@@ -13,9 +13,9 @@ use turnwright::skeleton::RestChoice;
 
 use crate::support::assert_close;
 
-/// Where a joint is bound, in the mesh.
+/// Where a joint is bound, in the mesh; of the size that the carrier gives it.
 fn bound(turn: DQuat, place: DVec3) -> DAffine3 {
-    DAffine3::from_rotation_translation(turn, place)
+    DAffine3::from_scale_rotation_translation(DVec3::splat(2.0), turn, place)
 }
 
 /// `carrier` (turned and scaled) over `hip` over `between` (no joint) over `knee`; the nodes stand bent, the skins are bound
@@ -95,6 +95,14 @@ fn skins_with_matrices_are_measured_from_their_bind_pose() {
     assert_close!(world[knee].position(), KNEE, 1e-6);
     let expected = Rotor::from_xyzw(turn.to_array());
     assert_close!(world[knee].rotation, expected, 1e-6);
+    // A mesh in hundredths of the scene's lengths is bound in the same pose.
+    let small = [bound(turn, KNEE), bound(DQuat::IDENTITY, HIP)];
+    let small = small.map(|bind| DAffine3::from_scale(DVec3::splat(0.01)) * bind);
+    let small = opened(&figure(&[(&[3, 1], &small)]), None);
+    let same = small.clips[0].skeleton.chosen_rest_pose();
+    let world = skeleton.world(&same);
+    assert_close!(world[hip].position(), HIP, 1e-5);
+    assert_close!(world[knee].position(), KNEE, 1e-5);
     // It plays as before: the knee has no channel and keeps the turn of its node.
     let defaults = source.with_rest(Some(RestChoice::Defaults)).unwrap();
     for secs in [0.0, 0.4, 1.0] {

@@ -41,16 +41,22 @@ pub(super) fn bind_pose(
     }
     note_differences(skeleton, &skins, notes);
     let mut pose = skeleton.rest_pose();
+    let rest_world = skeleton.world(&pose);
     let mut world: Vec<DAffine3> = Vec::with_capacity(pose.len());
     for (joint, own) in pose.iter_mut().enumerate() {
         let owner = skins.iter().find(|skin| skin.places.contains_key(&joint));
         let bound = owner.and_then(|skin| {
             let place = skin.places.get(&joint)?;
-            let parent = match bound_parent(skeleton, skin, joint) {
-                Some((parent, between)) => parent * between,
-                None => skeleton.joints()[joint].parent.map_or(DAffine3::IDENTITY, |parent| world[parent]),
+            let local = match bound_parent(skeleton, skin, joint) {
+                Some((parent, between)) => (parent * between).inverse() * *place,
+                None => {
+                    let parent = skeleton.joints()[joint].parent.map(|parent| world[parent]);
+                    let size = common_size(&rest_world[joint].scene_from_joint, place);
+                    let place = DAffine3::from_scale(DVec3::splat(size)) * *place;
+                    parent.unwrap_or(DAffine3::IDENTITY).inverse() * place
+                }
             };
-            let local = Transform::from_affine(&(parent.inverse() * *place));
+            let local = Transform::from_affine(&local);
             let is_sound = local.translation.is_finite() && local.rotation.is_finite();
             (is_sound && local.scale.is_finite() && local.scale.abs().min_element() > 1e-9).then_some(local)
         });
@@ -66,6 +72,12 @@ pub(super) fn bind_pose(
         world.push(parent * own.to_affine());
     }
     Some(pose)
+}
+
+/// A mesh may be measured in other lengths than the scene: how much larger the first joint of a skin is in the scene.
+fn common_size(in_scene: &DAffine3, in_mesh: &DAffine3) -> f64 {
+    let size = (in_scene.matrix3.determinant() / in_mesh.matrix3.determinant()).abs().cbrt();
+    if size.is_finite() && size > 0.0 && (size - 1.0).abs() > SAME_BIND { size } else { 1.0 }
 }
 
 /// The places of all skins that say them. A skin that can't be read is told and passed over: a clip plays without it.
