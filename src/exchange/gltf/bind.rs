@@ -47,14 +47,13 @@ pub(super) fn bind_pose(
         let owner = skins.iter().find(|skin| skin.places.contains_key(&joint));
         let bound = owner.and_then(|skin| {
             let place = skin.places.get(&joint)?;
-            let local = match bound_parent(skeleton, skin, joint) {
-                Some((parent, between)) => (parent * between).inverse() * *place,
-                None => {
-                    let parent = skeleton.joints()[joint].parent.map(|parent| world[parent]);
-                    let size = common_size(&rest_world[joint].scene_from_joint, place);
-                    let place = DAffine3::from_scale(DVec3::splat(size)) * *place;
-                    parent.unwrap_or(DAffine3::IDENTITY).inverse() * place
-                }
+            let local = if let Some((parent, between)) = bound_parent(skeleton, skin, joint) {
+                (parent * between).inverse() * *place
+            } else {
+                let parent = skeleton.joints()[joint].parent.map(|parent| world[parent]);
+                let size = common_size(&rest_world[joint].scene_from_joint, place);
+                let place = DAffine3::from_scale(DVec3::splat(size)) * *place;
+                parent.unwrap_or(DAffine3::IDENTITY).inverse() * place
             };
             let local = Transform::from_affine(&local);
             let is_sound = local.translation.is_finite() && local.rotation.is_finite();
