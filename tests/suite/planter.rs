@@ -285,7 +285,8 @@ fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Opti
             (with_poses(track, first, &off), planted((first, last)))
         }
         // Needs limits: has tests of its own in `limits`.
-        SnagKind::PastLimit => return None,
+        // Seams and slides are faults of the whole clip: `ground_faults` plants them.
+        SnagKind::PastLimit | SnagKind::Seam | SnagKind::Slide => return None,
         SnagKind::Stuck => {
             let (first, last) = moving_run(random, track)?;
             let held = first - 1;
@@ -299,8 +300,6 @@ fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Opti
             };
             (broken, planted((first, last)))
         }
-        // Faults of the whole clip: `ground_faults` plants them.
-        SnagKind::Seam | SnagKind::Slide => return None,
         SnagKind::Jitter => {
             let step_secs = track.times.median_step()?;
             let least = ((0.3 / step_secs).ceil() as usize).max(7);

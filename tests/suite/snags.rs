@@ -603,9 +603,8 @@ fn whole_turns_that_a_flip_hides_are_taken_out_too() {
     // A heading that goes round, written as an exporter does, each frame by itself within ±180°; it passes 180° while the joint is flipped.
     let order = EulerOrder::ZXY;
     let truth: Vec<Rotor> = (0..240)
-        .map(|i| {
-            order.to_rotor([100.0 + 0.7 * i as f64, 20.0 * (0.05 * i as f64).sin(), 5.0].map(f64::to_radians))
-        })
+        .map(f64::from)
+        .map(|i| order.to_rotor([100.0 + 0.7 * i, 20.0 * (0.05 * i).sin(), 5.0].map(f64::to_radians)))
         .collect();
     let stored: Vec<[f64; 3]> = flipped(&truth, &[(100, 140)], Axis::Y)
         .into_iter()
