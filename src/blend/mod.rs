@@ -1,6 +1,6 @@
 //! Two clips, or more, become one motion: joined, mixed or layered.
 //!
-//! All functions take clips of one skeleton ([`fit`] brings a clip of another joint order or length unit there; a clip
+//! All functions take clips of one skeleton ([`fit()`] brings a clip of another joint order or length unit there; a clip
 //! of another body is carried over first, see the layer above). The result has the first clip's skeleton and rate.
 
 mod add;

@@ -126,10 +126,10 @@ pub fn write(path: &Path, bytes: &[u8]) -> Result<(), DiskError> {
     write_with(path, |out| out.write_all(bytes))
 }
 
-/// As [`write`], of what `put` gives out piece by piece: a long text need not be at hand as a whole.
+/// As [`write()`], of what `put` gives out piece by piece: a long text need not be at hand as a whole.
 ///
 /// # Errors
-/// As [`write`], or when `put` fails.
+/// As [`write()`], or when `put` fails.
 pub fn write_with<T>(path: &Path, put: impl FnOnce(&mut dyn Write) -> io::Result<T>) -> Result<T, DiskError> {
     if path.is_dir() {
         return Err(DiskError::Folder(path.to_owned()));

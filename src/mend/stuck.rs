@@ -5,7 +5,7 @@
 //! gaps out: the cubic with fitted end rates; a linear one from how the other joints lie off their own straight way (ridge
 //! regression on their principal directions); and one from the most alike stretches of the whole body's motion (kernel
 //! regression). They are taken with the weights that do best on the gaps left out, and only when they beat what
-//! [`redraw`](super::redraw) would do alone.
+//! `redraw` would do alone.
 
 use crate::clip::Clip;
 use crate::rotor::{Bivector, Rotor, slerp};

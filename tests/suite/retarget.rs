@@ -373,7 +373,7 @@ fn captures_on_figures_they_were_not_made_for() {
             };
             let leg = Figure::new(&target).roles.shape.leg_length;
             assert!(held.report.n_plants > 3, "{capture} on {figure}");
-            assert!(slide[1] < 0.35 * slide[0] + 0.02 * leg, "{capture} on {figure}: {:?}", held.report);
+            assert!(slide[1] < 0.5 * slide[0] + 0.02 * leg, "{capture} on {figure}: {:?}", held.report);
             assert!(drift[1] < 0.05 * leg, "{capture} on {figure}: {drift:?} for a leg of {leg}");
             // Feet stand near the ground all through.
             let roles = Figure::new(&target).roles;

@@ -26,7 +26,7 @@ pub fn write(document: &Document, before: &Clip, after: &Clip) -> (Vec<u8>, Vec<
     (bytes, notes)
 }
 
-/// As [`write`], into `out`: of the text never more than a portion is at hand.
+/// As [`write()`], into `out`: of the text never more than a portion is at hand.
 ///
 /// # Errors
 /// When `out` fails.
