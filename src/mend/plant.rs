@@ -149,7 +149,8 @@ pub(super) fn hold(clip: &Clip, plants: &[Plant]) -> Clip {
                     continue;
                 };
                 let last_frame = last.min(count - 1);
-                spans.push(PlantedSpan { foot, part, first_frame, last_frame });
+                // At the height it has.
+                spans.push((PlantedSpan { foot, part, first_frame, last_frame }, None));
             }
             let frames = || plant.heel.iter().chain(&plant.ball);
             if let (Some(first), Some(last)) =
@@ -162,13 +163,7 @@ pub(super) fn hold(clip: &Clip, plants: &[Plant]) -> Clip {
             }
         }
         if !spans.is_empty() {
-            let asked = Corrections::of(
-                &result,
-                own,
-                &spans.iter().map(|&span| (span, None)).collect::<Vec<_>>(),
-                &still,
-                &options,
-            );
+            let asked = Corrections::of(&result, own, &spans, &still, &options);
             result = bent(&result, foot, own, &asked, &options, &mut report);
         }
     }

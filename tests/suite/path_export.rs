@@ -3,38 +3,17 @@
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use turnwright::clip::{
-    Clip, FrameGrid, JointTracks, MeantTurn, PathKind, Paths, RotationTrack, Spacing, Times,
-};
+use turnwright::clip::{Clip, MeantTurn, PathKind, Paths, RotationTrack, Spacing, Times};
 use turnwright::exchange::{self, Guard, OpenOptions, disk, gltf};
 use turnwright::rotor::{Axis, Bivector, EndRates, Rotor};
-use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
+use crate::paths::clip_of;
 use crate::support::assert_close;
 
 fn folder() -> PathBuf {
     let folder = Path::new(env!("CARGO_TARGET_TMPDIR")).join("path-export");
     std::fs::create_dir_all(&folder).expect("a folder for the tests");
     folder
-}
-
-fn clip_of(track: RotationTrack, rate: f64) -> Clip {
-    let joint = Joint {
-        name: "Wheel".to_owned(),
-        number: 0,
-        parent: None,
-        rest: Transform::IDENTITY,
-        kind: JointKind::Joint,
-        tips: vec![],
-    };
-    let duration_secs = track.times.span().expect("some keys").1;
-    Clip {
-        name: "turning".to_owned(),
-        skeleton: Arc::new(Skeleton::new(vec![joint]).expect("one joint")),
-        joints: vec![Arc::new(JointTracks { rotation: Some(track), ..JointTracks::default() })],
-        grid: FrameGrid::even(rate, duration_secs),
-        duration_secs,
-    }
 }
 
 fn about_z(degrees: f64) -> Rotor {

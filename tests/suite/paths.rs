@@ -596,7 +596,7 @@ fn keys_taken_out_leave_meant_turns() {
 }
 
 /// A clip of one joint, counted at a rate.
-fn clip_of(track: RotationTrack, rate: f64) -> Clip {
+pub(crate) fn clip_of(track: RotationTrack, rate: f64) -> Clip {
     let joint = Joint {
         name: "Wheel".to_owned(),
         number: 0,
@@ -607,7 +607,7 @@ fn clip_of(track: RotationTrack, rate: f64) -> Clip {
     };
     let duration_secs = track.times.span().expect("some keys").1;
     Clip {
-        name: String::new(),
+        name: "turning".to_owned(),
         skeleton: Arc::new(Skeleton::new(vec![joint]).expect("one joint")),
         joints: vec![Arc::new(JointTracks { rotation: Some(track), ..JointTracks::default() })],
         grid: FrameGrid::even(rate, duration_secs),
