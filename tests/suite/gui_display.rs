@@ -1,8 +1,9 @@
 //! The real program in a real window: an X display without a screen, driven by mouse and keyboard.
 
+use std::cell::RefCell;
 use std::io::{BufRead as _, BufReader};
 use std::path::Path;
-use std::process::{Child, Command, Stdio};
+use std::process::{Child, Command, ExitStatus, Stdio};
 use std::time::{Duration, Instant};
 
 use turnwright::exchange::disk;
@@ -20,7 +21,9 @@ impl Drop for Running {
 /// An X display of its own, and its name.
 fn display() -> Option<(Running, String)> {
     let mut server = Command::new("Xvfb")
-        .args(["-displayfd", "1", "-screen", "0", "1440x900x24", "-nolisten", "tcp"])
+        // Without -noreset the server starts anew when its last client leaves, and drops whoever is just connecting:
+        // each look by a short-lived tool would be a chance for the program to lose its display.
+        .args(["-displayfd", "1", "-screen", "0", "1440x900x24", "-nolisten", "tcp", "-noreset"])
         .stdout(Stdio::piped())
         .stderr(Stdio::null())
         .spawn()
@@ -35,6 +38,8 @@ fn display() -> Option<(Running, String)> {
 
 struct Desk {
     display: String,
+    /// The program under test, once it runs: waiting for one that has ended is no use.
+    program: RefCell<Option<Running>>,
 }
 
 impl Desk {
@@ -76,9 +81,16 @@ impl Desk {
             if let Some(found) = look() {
                 return found;
             }
+            let ended = self.ended();
+            assert!(ended.is_none(), "no `{what}`: the program ended with {ended:?}");
             assert!(start.elapsed() < Duration::from_secs(90), "no `{what}` on display {}", self.display);
             std::thread::sleep(Duration::from_millis(150));
         }
+    }
+
+    /// How the program ended, if it has.
+    fn ended(&self) -> Option<ExitStatus> {
+        self.program.borrow_mut().as_mut().and_then(|program| program.0.try_wait().expect("a child can be asked"))
     }
 
     /// What is on the display: red, green, blue of each pixel.
@@ -118,7 +130,7 @@ fn a_clip_is_cleaned_up_with_mouse_and_keyboard() {
         return;
     }
     let (_server, display) = display().expect("a display starts");
-    let desk = Desk { display };
+    let desk = Desk { display, program: RefCell::new(None) };
     let folder = tempfile::tempdir().unwrap();
     let scene = turnwright::demo::SCENES[0];
     let clip = folder.path().join(scene.clip_file);
@@ -131,7 +143,7 @@ fn a_clip_is_cleaned_up_with_mouse_and_keyboard() {
         .env_remove("WAYLAND_SOCKET")
         .spawn()
         .unwrap();
-    let mut program = Running(program);
+    desk.program.replace(Some(Running(program)));
     let window = desk.window("deckhand.bvh - Turnwright");
     desk.focus(&window);
     desk.tool(&["windowmove", &window, "0", "0"]);
@@ -177,6 +189,7 @@ fn a_clip_is_cleaned_up_with_mouse_and_keyboard() {
     });
     desk.window("^deckhand.ron - Turnwright");
     desk.press("ctrl+q");
+    let mut program = desk.program.take().expect("it was started");
     let status = desk.wait("the end of the program", || program.0.try_wait().unwrap());
     assert!(status.success(), "{status}");
     assert_eq!(disk::read(&clip).unwrap(), scene.clip_bytes, "the source is never changed");
