@@ -83,14 +83,20 @@ impl Desk {
             }
             let ended = self.ended();
             assert!(ended.is_none(), "no `{what}`: the program ended with {ended:?}");
-            assert!(start.elapsed() < Duration::from_secs(90), "no `{what}` on display {}", self.display);
+            if start.elapsed() > Duration::from_mins(2) {
+                let shown = self.tool(&["search", "--name", ".", "getwindowname", "%@"]);
+                panic!("no `{what}` on display {}; windows there: {shown:?}", self.display);
+            }
             std::thread::sleep(Duration::from_millis(150));
         }
     }
 
     /// How the program ended, if it has.
     fn ended(&self) -> Option<ExitStatus> {
-        self.program.borrow_mut().as_mut().and_then(|program| program.0.try_wait().expect("a child can be asked"))
+        self.program
+            .borrow_mut()
+            .as_mut()
+            .and_then(|program| program.0.try_wait().expect("a child can be asked"))
     }
 
     /// What is on the display: red, green, blue of each pixel.
