@@ -1,0 +1,97 @@
+//! What a person can ask for without further words, and the menus that hold it.
+
+/// An action without parameters: an entry of the table.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
+#[expect(missing_docs, reason = "each has its label and its tooltip in the table below")]
+pub enum Action {
+    Open,
+    OpenPath,
+    OpenDemo,
+    ChooseClip,
+    Save,
+    SaveAs,
+    Export,
+    Relocate,
+    Quit,
+    Undo,
+    Redo,
+    History,
+    Fit,
+    Follow,
+    Parallel,
+    LookXy,
+    LookZx,
+    LookYz,
+    LookXyBack,
+    LookZxBack,
+    LookYzBack,
+    PlaneAngles,
+    SwingTwist,
+    FileNumbers,
+    TurnRate,
+    HeatTurnRate,
+    HeatChange,
+    WorstFirst,
+    WholeTime,
+    NearerTime,
+    FartherTime,
+    ShowBefore,
+    SourceAlone,
+    Light,
+    PreviousJoint,
+    NextJoint,
+    FindAgain,
+    StopFinding,
+    PreviousSnag,
+    NextSnag,
+    Mend,
+    MendKind,
+    MendSafe,
+    Leave,
+    TakeBack,
+    Play,
+    StepBack,
+    StepForward,
+    PreviousKey,
+    NextKey,
+    First,
+    Last,
+    Loop,
+    LoopFrom,
+    LoopTo,
+    LoopAll,
+    Slower,
+    Faster,
+    Shortcuts,
+    WhatsNew,
+    About,
+}
+
+/// The menus, from left to right.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[expect(missing_docs, reason = "the names say it")]
+pub enum Menu {
+    File,
+    Edit,
+    View,
+    Snags,
+    Time,
+    Help,
+}
+
+impl Menu {
+    /// All menus in order.
+    pub const ALL: [Self; 6] = [Self::File, Self::Edit, Self::View, Self::Snags, Self::Time, Self::Help];
+
+    /// Its title.
+    pub const fn title(self) -> &'static str {
+        match self {
+            Self::File => "File",
+            Self::Edit => "Edit",
+            Self::View => "View",
+            Self::Snags => "Snags",
+            Self::Time => "Time",
+            Self::Help => "Help",
+        }
+    }
+}

@@ -1,0 +1,88 @@
+//! Everything a person can ask for: the actions of menus and keys, and the commands with what they are about.
+
+use std::path::PathBuf;
+
+use crate::exchange::csv::{NamedColumns, TimeUnit};
+use crate::raster::Camera;
+use crate::scene::{Edit, PassId, PassStep};
+use crate::skeleton::RestChoice;
+
+use super::file_picker::Purpose;
+use super::jobs::Slot;
+use super::view_models::{SnagFilter, SnagOrder, TimeWindow};
+
+mod action;
+mod situation;
+mod table;
+
+pub use action::{Action, Menu};
+pub use situation::Situation;
+pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
+
+/// What panels ask for. It is done between frames, so that no panel sees a half-changed world.
+#[derive(Clone, Debug)]
+pub enum Command {
+    /// An entry of the table.
+    Do(Action),
+    /// Change the document.
+    Edit(Edit),
+    /// Work on another clip.
+    ShowClip(usize),
+    /// Choose a joint, or none.
+    ChooseJoint(Option<usize>),
+    /// Choose a snag and go there.
+    ChooseSnag(usize),
+    /// Move the playhead, seconds; onto the nearest frame.
+    Scrub(f64),
+    /// Show another stretch of time.
+    ShowTime(TimeWindow),
+    /// Play between these times only.
+    SetLoopRange(Option<(f64, f64)>),
+    /// Play at this many times the true speed.
+    SetSpeed(f64),
+    /// Which snags are listed.
+    SetFilter(SnagFilter),
+    /// How they are ordered.
+    SetOrder(SnagOrder),
+    /// Hide or show what hangs below a joint.
+    Fold(usize),
+    /// Show a pass with other parameters while one is dragged; nothing is recorded until it is let go.
+    PreviewPass(PassId, Box<PassStep>),
+    /// Go to a step of the history.
+    GoToStep(usize),
+    /// Take away the message on top.
+    Dismiss(usize),
+    /// Set the camera.
+    SetCamera(Camera),
+    /// The camera has been brought to the figure.
+    FigureIsFitted {
+        /// The camera.
+        camera: Camera,
+        /// Whether it goes along.
+        follows: bool,
+    },
+    /// The pointer is over a joint.
+    HoverJoint(usize),
+    /// Open files.
+    OpenFiles(Vec<PathBuf>),
+    /// Open a CSV file with these columns, in this unit of time.
+    OpenTable(PathBuf, NamedColumns, Option<TimeUnit>),
+    /// Save the scene there.
+    SaveTo(PathBuf),
+    /// Export the clip there.
+    ExportTo(PathBuf),
+    /// Use this file as a source.
+    RelocateTo(usize, PathBuf),
+    /// Measure the turns of the clip on show, and of all others of its file, from this pose.
+    ChooseRest(RestChoice),
+    /// Ask with the desktop's own dialog.
+    Browse(Purpose),
+    /// Take away the dialog.
+    CloseDialog,
+    /// Save, then do what was asked for.
+    SaveAndGoOn,
+    /// Do what was asked for without saving.
+    DiscardAndGoOn,
+    /// Stop a job.
+    Cancel(Slot),
+}

@@ -1,0 +1,59 @@
+//! What has been typed into a sheet.
+
+use std::path::PathBuf;
+
+use super::super::super::view_models::Memo;
+use crate::exchange::csv::TimeUnit;
+use crate::exchange::disk;
+
+/// What has been typed.
+#[derive(Debug, Default)]
+pub(crate) struct Form {
+    /// The path.
+    pub path: String,
+    /// What was wrong with it.
+    pub error: Option<String>,
+    /// Words looked for in the list of keys.
+    pub search: String,
+    /// Which columns hold the time, and w, x, y, z.
+    pub columns: [usize; 5],
+    /// The unit of the time column; without it what the header says, else seconds.
+    pub time_unit: Option<TimeUnit>,
+    /// What lies in the folder of the path.
+    pub(super) listing: Memo<PathBuf, Result<Vec<disk::Entry>, String>>,
+    /// The field has been given the keyboard.
+    pub(super) has_focus: bool,
+}
+
+impl Form {
+    /// A new question about a path.
+    pub(crate) fn with_path(path: impl Into<String>) -> Self {
+        Self { path: path.into(), ..Self::default() }
+    }
+
+    /// A guess at what the columns are: by their names, else the first five in order.
+    pub(crate) fn with_columns(names: &[String]) -> Self {
+        let like = |wanted: &[&str]| {
+            names.iter().position(|name| {
+                let name = name.to_lowercase();
+                wanted.iter().any(|word| {
+                    name == *word
+                        || name.ends_with(&format!("_{word}"))
+                        || name.ends_with(&format!(".{word}"))
+                })
+            })
+        };
+        let guesses = [
+            like(&["time", "t", "timestamp", "time_s", "ms", "us"]),
+            like(&["w", "qw", "q0"]),
+            like(&["x", "qx", "q1"]),
+            like(&["y", "qy", "q2"]),
+            like(&["z", "qz", "q3"]),
+        ];
+        let mut columns = [0, 1, 2, 3, 4];
+        for (column, guess) in columns.iter_mut().zip(guesses) {
+            *column = guess.unwrap_or(*column);
+        }
+        Self { columns, ..Self::default() }
+    }
+}
