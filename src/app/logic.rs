@@ -5,13 +5,14 @@ mod files;
 mod orders;
 mod playing;
 mod snags;
+mod time;
 
 use egui::Context;
 
 use super::commands::{Action, Command};
 use super::panels::{Dialog, Form, Message, Then};
 use super::session::Fit;
-use super::view_models::{CurveView, HeatKind};
+use super::view_models::{CurveView, HeatKind, TimeChoice};
 use super::window::Window;
 use crate::raster::{Lens, StraightView};
 use crate::scene::Edit;
@@ -88,6 +89,7 @@ impl Window {
                 }
             }
             Command::Cancel(slot) => self.stop(slot),
+            Command::Time(command) => self.run_time(command),
         }
     }
 
@@ -154,8 +156,13 @@ impl Window {
             A::First | A::Last => self.go_to_end(action == A::Last),
             A::Loop => self.bench.session.playback.is_looping ^= true,
             A::LoopFrom | A::LoopTo => self.loop_here(action == A::LoopTo),
-            A::LoopAll => self.bench.session.playback.range = None,
+            A::LoopAll => self.set_loop_range(None),
             A::Slower | A::Faster => self.step_speed(action == A::Faster),
+            A::ChooseFrom | A::ChooseTo => self.choose_from_playhead(action == A::ChooseTo),
+            A::ChooseLimb => self.choose_limb(),
+            A::ChooseAll => self.choose(TimeChoice::default()),
+            A::PlayChoice => self.play_choice(),
+            A::ShowChoice => self.show_choice(),
             A::Shortcuts => self.show_dialog(Dialog::Shortcuts),
             A::WhatsNew => self.show_dialog(Dialog::WhatsNew),
             A::About => self.show_dialog(Dialog::About),

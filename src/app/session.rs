@@ -6,7 +6,7 @@ use crate::clip::Clip;
 use crate::raster::Camera;
 use crate::scene::SnagMark;
 
-use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeWindow};
+use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeChoice, TimeWindow};
 
 /// The speeds that the menu steps through.
 pub const SPEEDS: [f64; 7] = [0.1, 0.25, 0.5, 1.0, 1.5, 2.0, 4.0];
@@ -22,13 +22,22 @@ pub struct Playback {
     pub is_looping: bool,
     /// Only this part is played.
     pub range: Option<(f64, f64)>,
+    /// That part is the choice, and goes with it.
+    pub only_choice: bool,
     /// Times the true speed, 0.1 to 4.
     pub speed: f64,
 }
 
 impl Default for Playback {
     fn default() -> Self {
-        Self { playhead_secs: 0.0, is_playing: false, is_looping: true, range: None, speed: 1.0 }
+        Self {
+            playhead_secs: 0.0,
+            is_playing: false,
+            is_looping: true,
+            range: None,
+            only_choice: false,
+            speed: 1.0,
+        }
     }
 }
 
@@ -80,6 +89,8 @@ pub struct Session {
     pub playback: Playback,
     /// The stretch of time on screen.
     pub window: TimeWindow,
+    /// The joints and the stretch of time that tools and new passes act on.
+    pub choice: TimeChoice,
     /// What the curves show.
     pub curve_view: CurveView,
     /// What the turn map shows.
@@ -114,6 +125,7 @@ impl Default for Session {
             snag: None,
             playback: Playback::default(),
             window: TimeWindow::whole(1.0),
+            choice: TimeChoice::default(),
             curve_view: CurveView::PlaneAngles,
             heat_kind: HeatKind::TurnRate,
             worst_first: false,

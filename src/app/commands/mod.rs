@@ -14,10 +14,12 @@ use super::view_models::{SnagFilter, SnagOrder, TimeWindow};
 mod action;
 mod situation;
 mod table;
+mod time;
 
 pub use action::{Action, Menu};
 pub use situation::Situation;
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
+pub use time::TimeCommand;
 
 /// What panels ask for. It is done between frames, so that no panel sees a half-changed world.
 #[derive(Clone, Debug)]
@@ -85,4 +87,6 @@ pub enum Command {
     DiscardAndGoOn,
     /// Stop a job.
     Cancel(Slot),
+    /// Choices of time and joints, the turn map, the snag list.
+    Time(TimeCommand),
 }

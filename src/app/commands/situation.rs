@@ -38,6 +38,12 @@ pub struct Situation {
     pub is_looping: bool,
     /// Only a part is played.
     pub has_loop_range: bool,
+    /// Joints or a stretch of time are chosen to work on.
+    pub has_choice: bool,
+    /// A stretch of time is chosen.
+    pub has_chosen_span: bool,
+    /// Only the choice is played.
+    pub plays_choice: bool,
     /// The camera goes with the figure.
     pub follows: bool,
     /// The camera shows depth in parallel.

@@ -62,7 +62,9 @@ impl Window {
         let Some(clip) = self.bench.result() else { return };
         let on_frame = |secs: f64| clip.grid.time(clip.grid.frame(secs));
         let range = range.map(|(from, to)| (on_frame(from.min(to)), on_frame(from.max(to))));
-        self.bench.session.playback.range = range.filter(|(from, to)| to > from);
+        let playback = &mut self.bench.session.playback;
+        playback.range = range.filter(|(from, to)| to > from);
+        playback.only_choice = false;
     }
 
     pub(super) fn loop_here(&mut self, is_end: bool) {

@@ -12,6 +12,7 @@ mod pass_rows;
 mod pyramid;
 mod sampled;
 mod snag_rows;
+mod time_choice;
 mod time_window;
 mod words;
 
@@ -27,5 +28,6 @@ pub use pass_rows::{PassRow, pass_rows};
 pub use pyramid::Pyramid;
 pub use sampled::{SampleTimes, limb_direction, rotation_at};
 pub use snag_rows::{SnagFilter, SnagOrder, SnagRow, SnagState, snag_rows, snag_states};
+pub use time_choice::TimeChoice;
 pub use time_window::{Tick, TimeWindow, ticks};
 pub use words::{counted, degrees, degrees_fixed, frames_text, rate_text, seconds};
