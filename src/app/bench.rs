@@ -5,16 +5,17 @@ use std::sync::{Arc, Mutex};
 
 use crate::clip::Clip;
 use crate::exchange::Source;
+use crate::limit::Limits;
 use crate::scene::{
-    ClipWork, Document, Evaluation, Evaluator, History, Library, Loaded, Pass, PassId, PassStep, Revision,
-    SnagMark, SourceRef,
+    ClipWork, Document, Edit, Evaluation, Evaluator, History, Library, Loaded, Pass, PassId, PassStep,
+    Revision, SearchChoice, SnagMark, SourceRef,
 };
 use crate::snag::Snag;
 
 use super::commands::Situation;
 use super::session::Session;
 use super::view_models::{
-    Changes, CurveSet, CurveView, HeatKind, HeatMap, Memo, SnagFilter, SnagOrder, SnagRow, SnagState,
+    Changes, CurveSet, CurveView, HeatMap, HeatWish, Memo, SnagFilter, SnagOrder, SnagRow, SnagState,
     snag_rows, snag_states,
 };
 
@@ -52,11 +53,29 @@ pub struct Evaluated {
     pub changes: Changes,
 }
 
+/// What a search for snags hangs on, beside the clip.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Searched {
+    /// The limits that joints are held against.
+    pub limits: Option<Arc<Limits>>,
+    /// What else is looked for.
+    pub search: SearchChoice,
+}
+
+impl Searched {
+    /// As the document says.
+    pub fn of(work: &ClipWork) -> Self {
+        Self { limits: work.limits.clone(), search: work.search }
+    }
+}
+
 /// What has been worked out about one clip.
 #[derive(Clone, Debug, Default)]
 pub struct Findings {
     /// The snags of the source.
     pub snags: Option<Arc<Vec<Snag>>>,
+    /// What they were looked for with, or were to be when the search was stopped.
+    pub searched: Option<Searched>,
     /// The search was stopped by hand: it does not start again by itself.
     pub search_is_stopped: bool,
     /// The result.
@@ -227,7 +246,7 @@ pub struct Bench {
     /// What a pass would do while one of its parameters is dragged; the document changes on letting go.
     pub preview: Option<(PassId, PassStep)>,
     /// The turn map.
-    pub heat: Option<FromClips<HeatKind, Arc<HeatMap>>>,
+    pub heat: Option<FromClips<HeatWish, Arc<HeatMap>>>,
     /// The curves of the chosen joint.
     pub curves: Option<FromClips<(usize, CurveView), Arc<CurveSet>>>,
     /// The way of the chosen joint's tip.
@@ -311,12 +330,29 @@ impl Bench {
     /// The passes to run: those of the document, with the parameters that are being dragged.
     pub fn passes(&self) -> Vec<Pass> {
         let mut passes = self.work().map(|work| work.passes.clone()).unwrap_or_default();
+        if let Some(more) = self.looked_at() {
+            passes = more;
+        }
         if let Some((id, step)) = &self.preview {
             for pass in passes.iter_mut().filter(|pass| pass.id == *id) {
                 pass.step = step.clone();
             }
         }
         passes
+    }
+
+    /// The passes with the chosen snag mended as well, while it is open and its mend is looked at before it is accepted.
+    fn looked_at(&self) -> Option<Vec<Pass>> {
+        let snag = self.chosen_snag().filter(|_| self.session.looks)?;
+        let work = self.work().filter(|work| !work.mends(SnagMark::of(snag)))?;
+        let edit = Edit::Mend { work: 0, snags: vec![snag.clone()] };
+        let alone = Document { sources: Vec::new(), works: vec![work.clone()] };
+        edit.apply(&alone).ok().and_then(|mut after| after.works.pop()).map(|work| work.passes)
+    }
+
+    /// Whether what is shown is not what the document says: a parameter is dragged, or a mend is looked at.
+    pub fn is_trying(&self) -> bool {
+        self.preview.is_some() || self.looked_at().is_some()
     }
 
     /// Open snags that may be mended unasked.
@@ -398,6 +434,7 @@ impl Bench {
             is_playing: session.playback.is_playing,
             is_looping: session.playback.is_looping,
             has_loop_range: session.playback.range.is_some(),
+            looks: session.looks,
             has_choice: !session.choice.is_everything(),
             has_chosen_span: session.choice.span_secs.is_some(),
             plays_choice: session.playback.only_choice,
@@ -407,6 +444,9 @@ impl Bench {
             shows_source_alone: session.shows_source_alone(),
             is_light,
             worst_first: session.worst_first,
+            markers: work.map_or(0, |work| work.markers.len()),
+            limits: work.and_then(|work| work.limits.as_ref()).map(|limits| limits.title.clone()),
+            search: work.map(|work| work.search).unwrap_or_default(),
             curve_view: Some(session.curve_view),
             heat_kind: Some(session.heat_kind),
         }

@@ -19,6 +19,8 @@ pub enum Purpose {
     Export,
     /// To use as a source that was not found.
     Relocate,
+    /// To read limits from.
+    Limits,
 }
 
 /// What came of it.
@@ -104,6 +106,10 @@ fn dialog(purpose: Purpose, suggestion: &Path) -> Vec<PathBuf> {
         }
         Purpose::Relocate => {
             let dialog = dialog.set_title("Find the source").add_filter("Clips", &clips);
+            wait_for(dialog.pick_file()).into_iter().map(paths).collect()
+        }
+        Purpose::Limits => {
+            let dialog = dialog.set_title("Limits from a file").add_filter("Limits", &["csv", "ron"]);
             wait_for(dialog.pick_file()).into_iter().map(paths).collect()
         }
         Purpose::Save => {

@@ -17,6 +17,8 @@ pub enum Slot {
     Survey,
     /// Running the passes.
     Evaluate,
+    /// Limits for the clip's joints.
+    Limits,
     /// The turn map.
     Heat,
     /// The rotation curves.
@@ -38,6 +40,7 @@ impl Slot {
             Self::Open | Self::Relocate => "Reading",
             Self::Survey => "Finding snags",
             Self::Evaluate => "Running passes",
+            Self::Limits => "Working out limits",
             Self::Heat => "Drawing the turn map",
             Self::Curves => "Sampling curves",
             Self::TipPath => "Following the tip",

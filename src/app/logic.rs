@@ -2,6 +2,8 @@
 
 mod answers;
 mod files;
+mod limits;
+mod markers;
 mod orders;
 mod playing;
 mod snags;
@@ -16,6 +18,8 @@ use super::view_models::{CurveView, HeatKind, TimeChoice};
 use super::window::Window;
 use crate::raster::{Lens, StraightView};
 use crate::scene::Edit;
+
+use limits::LimitsFrom;
 
 pub(crate) use answers::Answer;
 pub(crate) use orders::Asked;
@@ -137,6 +141,8 @@ impl Window {
             A::HeatTurnRate => self.bench.session.heat_kind = HeatKind::TurnRate,
             A::HeatChange => self.bench.session.heat_kind = HeatKind::Change,
             A::WorstFirst => self.bench.session.worst_first ^= true,
+            A::HeatLimitUse => self.bench.session.heat_kind = HeatKind::LimitUse,
+            A::FoldLimbs | A::UnfoldLimbs => self.fold_limbs(action == A::FoldLimbs),
             A::WholeTime | A::NearerTime | A::FartherTime => self.zoom_time(action),
             A::ShowBefore => self.bench.session.shows_before ^= true,
             A::SourceAlone => self.bench.session.source_alone ^= true,
@@ -150,6 +156,12 @@ impl Window {
             A::MendSafe => self.mend_safe(),
             A::TakeBack => self.take_back(),
             A::Leave => self.leave_or_reconsider(),
+            A::LookAtMend => self.bench.session.looks ^= true,
+            A::NoLimits => self.set_no_limits(),
+            A::AdultLimits => self.work_out_limits(LimitsFrom::Adult),
+            A::LearnLimits => self.work_out_limits(LimitsFrom::Clip),
+            A::LimitsFile => self.ask_for_limits(),
+            A::IsLoop | A::FindSlides => self.switch_search(action == A::IsLoop),
             A::Play => self.play_or_pause(),
             A::StepBack | A::StepForward => self.step_frame(action == A::StepForward),
             A::PreviousKey | A::NextKey => self.step_key(action == A::NextKey),
@@ -163,6 +175,10 @@ impl Window {
             A::ChooseAll => self.choose(TimeChoice::default()),
             A::PlayChoice => self.play_choice(),
             A::ShowChoice => self.show_choice(),
+            A::AddMarker => self.add_marker(),
+            A::RenameMarker => self.ask_marker_name_here(),
+            A::RemoveMarker => self.remove_marker_here(),
+            A::PreviousMarker | A::NextMarker => self.step_marker(action == A::NextMarker),
             A::Shortcuts => self.show_dialog(Dialog::Shortcuts),
             A::WhatsNew => self.show_dialog(Dialog::WhatsNew),
             A::About => self.show_dialog(Dialog::About),

@@ -1,5 +1,6 @@
 //! Pictures that our own rasteriser makes: the skeleton view and the turn map. Kept until what they show changes.
 
+use std::collections::BTreeSet;
 use std::sync::Arc;
 
 use egui::{ColorImage, Context, Rect, TextureHandle, TextureOptions, pos2};
@@ -7,7 +8,7 @@ use egui::{ColorImage, Context, Rect, TextureHandle, TextureOptions, pos2};
 use crate::clip::Clip;
 use crate::raster::{Camera, Canvas, SceneView, render_into};
 
-use super::view_models::{HeatMap, Memo, Stage, TimeWindow};
+use super::view_models::{HeatMap, MapRow, Memo, Stage, TimeWindow};
 
 /// A texture and the key of what is on it.
 pub(crate) struct Picture<K> {
@@ -76,7 +77,7 @@ pub(crate) struct MapKey {
     /// The numbers.
     pub map: Arc<HeatMap>,
     /// The rows from top to bottom.
-    pub rows: Vec<usize>,
+    pub rows: Vec<MapRow>,
     /// The stretch of time.
     pub window: TimeWindow,
     /// Pixels: width, and height of a row.
@@ -95,6 +96,28 @@ impl PartialEq for MapKey {
     }
 }
 
+/// What the rows of the turn map hang on.
+#[derive(Clone, Debug)]
+pub(crate) struct RowsKey {
+    /// The numbers.
+    pub map: Arc<HeatMap>,
+    /// The clip they are of.
+    pub clip: Arc<Clip>,
+    /// Joints whose limbs are folded.
+    pub folded: BTreeSet<usize>,
+    /// Whether the hottest row is on top.
+    pub worst_first: bool,
+}
+
+impl PartialEq for RowsKey {
+    fn eq(&self, other: &Self) -> bool {
+        Arc::ptr_eq(&self.map, &other.map)
+            && Arc::ptr_eq(&self.clip, &other.clip)
+            && self.folded == other.folded
+            && self.worst_first == other.worst_first
+    }
+}
+
 /// All pictures of the window, and what is kept for making them.
 #[derive(Debug, Default)]
 pub(crate) struct Pictures {
@@ -104,6 +127,10 @@ pub(crate) struct Pictures {
     pub figure: Option<SceneView>,
     /// The turn map.
     pub map: Picture<MapKey>,
+    /// Its rows.
+    pub map_rows: Memo<RowsKey, Arc<Vec<MapRow>>>,
+    /// A choice that is being dragged over the turn map: time, joint and place of the press.
+    pub choosing: Option<(f64, Option<usize>, egui::Pos2)>,
     /// The rasteriser's memory.
     pub canvas: Canvas,
     /// Floor and travel of the clip on show.

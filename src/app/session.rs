@@ -115,6 +115,8 @@ pub struct Session {
     pub filter: SnagFilter,
     /// In which order.
     pub order: SnagOrder,
+    /// Whether the mend of the chosen snag is shown before it is accepted.
+    pub looks: bool,
 }
 
 impl Default for Session {
@@ -138,6 +140,7 @@ impl Default for Session {
             folded: BTreeSet::new(),
             filter: SnagFilter::default(),
             order: SnagOrder::default(),
+            looks: false,
         }
     }
 }
@@ -165,6 +168,7 @@ impl Session {
             camera: Camera { lens: self.camera.lens, ..Camera::default() },
             shows_before: self.shows_before,
             order: self.order,
+            looks: self.looks,
             ..Self::default()
         };
     }

@@ -8,6 +8,7 @@ use crate::limit::Limits;
 use crate::skeleton::RestChoice;
 use crate::snag::{Snag, SnagKind};
 
+use super::marker::Marker;
 use super::pass::{ClipRef, MendPass, Need, Pass, PassId, SnagMark};
 
 /// A file the document was made from.
@@ -47,6 +48,28 @@ pub struct ClipWork {
     pub left: Vec<SnagMark>,
     /// The limits its joints are held against when snags are looked for.
     pub limits: Option<Arc<Limits>>,
+    /// What else is looked for.
+    pub search: SearchChoice,
+    /// Named moments, in the order of their times.
+    pub markers: Vec<Marker>,
+}
+
+/// What is looked for beside the kinds that concern every clip.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct SearchChoice {
+    /// The clip is a loop: its end has to meet its start.
+    pub is_loop: bool,
+    /// Planted feet must not slide.
+    pub finds_slides: bool,
+}
+
+impl SearchChoice {
+    /// The kinds that are looked for.
+    pub fn kinds(self) -> Vec<SnagKind> {
+        let more = [(self.is_loop, SnagKind::Seam), (self.finds_slides, SnagKind::Slide)];
+        let more = more.into_iter().filter(|(on, _)| *on).map(|(_, kind)| kind);
+        SnagKind::defaults().into_iter().chain(more).collect()
+    }
 }
 
 /// Everything a scene file holds, and everything undo brings back.
@@ -61,7 +84,16 @@ pub struct Document {
 impl ClipWork {
     /// Work on a clip that nothing has been done to.
     pub fn new(source: usize, clip: usize, name: impl Into<String>) -> Self {
-        Self { source, clip, name: name.into(), passes: Vec::new(), left: Vec::new(), limits: None }
+        Self {
+            source,
+            clip,
+            name: name.into(),
+            passes: Vec::new(),
+            left: Vec::new(),
+            limits: None,
+            search: SearchChoice::default(),
+            markers: Vec::new(),
+        }
     }
 
     /// The pass that mends this kind.

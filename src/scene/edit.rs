@@ -6,7 +6,8 @@ use crate::limit::Limits;
 use crate::skeleton::RestChoice;
 use crate::snag::Snag;
 
-use super::document::{ClipWork, Document, SourceRef};
+use super::document::{ClipWork, Document, SearchChoice, SourceRef};
+use super::marker::MarkerChange;
 use super::pass::{Pass, PassId, PassStep, Scope, SnagMark};
 
 /// One change of a document. `work` is the index of a clip's work.
@@ -109,6 +110,20 @@ pub enum Edit {
         /// Which.
         limits: Option<Arc<Limits>>,
     },
+    /// What is looked for beside the kinds that concern every clip.
+    SetSearch {
+        /// Of which clip.
+        work: usize,
+        /// What.
+        search: SearchChoice,
+    },
+    /// Add, rename, move or remove a marker.
+    ChangeMarkers {
+        /// Of which clip.
+        work: usize,
+        /// How.
+        change: MarkerChange,
+    },
     /// The source is to be found elsewhere, or has changed and is accepted.
     Relocate {
         /// Which source.
@@ -170,6 +185,12 @@ pub enum EditError {
         /// The clip.
         name: String,
     },
+    /// No such marker, or one at no time.
+    #[error("expected one of {count} markers at a time in seconds, found another")]
+    NoSuchMarker {
+        /// How many there are.
+        count: usize,
+    },
     /// An amount outside its range.
     #[error("expected an amount from 0 to 1, found {0}")]
     Amount(f64),
@@ -198,6 +219,13 @@ impl Edit {
             Self::RemovePass { .. } => "Remove pass".to_owned(),
             Self::SetLimits { limits: Some(limits), .. } => format!("Set limits: {}", limits.title),
             Self::SetLimits { limits: None, .. } => "Set no limits".to_owned(),
+            Self::SetSearch { search, .. } => match (search.is_loop, search.finds_slides) {
+                (false, false) => "Look for the usual snags".to_owned(),
+                (true, false) => "Look for the loop's seam too".to_owned(),
+                (false, true) => "Look for sliding feet too".to_owned(),
+                (true, true) => "Look for seam and sliding feet too".to_owned(),
+            },
+            Self::ChangeMarkers { change, .. } => change.label(),
             Self::Relocate { .. } => "Relocate source".to_owned(),
             Self::ChooseRest { rest: Some(rest), .. } => format!("Rest pose: {}", rest.title()),
             Self::ChooseRest { rest: None, .. } => "Rest pose by rule".to_owned(),
@@ -270,6 +298,12 @@ impl Edit {
                 passes.remove(place_of(passes, *pass)?);
             }
             Self::SetLimits { work, limits } => work_at(&mut next, *work)?.limits.clone_from(limits),
+            Self::SetSearch { work, search } => work_at(&mut next, *work)?.search = *search,
+            Self::ChangeMarkers { work, change } => {
+                let own = work_at(&mut next, *work)?;
+                let count = own.markers.len();
+                own.markers = change.applied(&own.markers).ok_or(EditError::NoSuchMarker { count })?;
+            }
             Self::ChooseRest { source, rest } => {
                 let count = next.sources.len();
                 let error = EditError::NoSuchSource { source_index: *source, count };

@@ -5,13 +5,15 @@ mod edit;
 mod evaluate;
 mod history;
 mod library;
+mod marker;
 pub mod pass;
 
-pub use document::{ClipWork, Document, Reading, SourceRef};
+pub use document::{ClipWork, Document, Reading, SearchChoice, SourceRef};
 pub use edit::{Edit, EditError};
 pub use evaluate::{Evaluation, Evaluator, Stage};
 pub use history::{History, Revision, Step};
 pub use library::{Library, Loaded};
+pub use marker::{Marker, MarkerChange};
 pub use pass::{
     BlendForm, BlendPass, ClipRef, KeysPass, LimitsPass, MendPass, Need, NoOthers, Others, Outcome, Pass,
     PassError, PassId, PassKind, PassStep, PushPass, ReducePass, ResamplePass, RetargetPass, Scope,

@@ -19,6 +19,7 @@ mod time;
 pub use action::{Action, Menu};
 pub use situation::Situation;
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
+pub(crate) use time::LEARNED;
 pub use time::TimeCommand;
 
 /// What panels ask for. It is done between frames, so that no panel sees a half-changed world.

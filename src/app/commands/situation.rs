@@ -1,6 +1,7 @@
 //! What decides which entries of the table can be done.
 
 use super::super::view_models::{CurveView, HeatKind};
+use crate::scene::SearchChoice;
 
 /// What decides whether an action can be done and whether it is on.
 #[derive(Clone, Debug, Default, PartialEq)]
@@ -38,6 +39,8 @@ pub struct Situation {
     pub is_looping: bool,
     /// Only a part is played.
     pub has_loop_range: bool,
+    /// The mend of the chosen snag is shown before it is accepted.
+    pub looks: bool,
     /// Joints or a stretch of time are chosen to work on.
     pub has_choice: bool,
     /// A stretch of time is chosen.
@@ -56,6 +59,12 @@ pub struct Situation {
     pub is_light: bool,
     /// The turn map has the worst joint on top.
     pub worst_first: bool,
+    /// How many markers there are.
+    pub markers: usize,
+    /// The limits that snags are looked for with: their title.
+    pub limits: Option<String>,
+    /// What else is looked for.
+    pub search: SearchChoice,
     /// What the curves show.
     pub curve_view: Option<CurveView>,
     /// What the turn map shows.

@@ -3,6 +3,7 @@
 use egui::{Key, KeyboardShortcut, Modifiers};
 
 use super::super::view_models::{CurveView, HeatKind};
+use super::time::LEARNED;
 use super::{Action, Menu, Situation};
 
 /// One entry of the table.
@@ -72,6 +73,7 @@ const DOCUMENT: fn(&Situation) -> bool = |now| now.has_document;
 const CLIP: fn(&Situation) -> bool = |now| now.has_clip;
 const JOINT: fn(&Situation) -> bool = |now| now.has_clip && now.has_joint;
 const SNAG: fn(&Situation) -> bool = |now| now.has_snag;
+const MARKERS: fn(&Situation) -> bool = |now| now.markers > 0;
 const SNAGS: fn(&Situation) -> bool = |now| now.snags > 0;
 
 /// The table.
@@ -265,6 +267,31 @@ pub const TABLE: &[Entry] = &{
         .switch(|now| now.worst_first),
         entry(
             V,
+            A::HeatLimitUse,
+            "Map use of limits",
+            "Colour = how much of its limit a joint uses",
+            Some(alt(Key::Num8)),
+            CLIP,
+        )
+        .switch(|now| matches!(now.heat_kind, Some(HeatKind::LimitUse))),
+        entry(
+            V,
+            A::FoldLimbs,
+            "Fold limbs",
+            "One row for each limb, in the turn map and the list of joints",
+            Some(alt(Key::Minus)),
+            CLIP,
+        ),
+        entry(
+            V,
+            A::UnfoldLimbs,
+            "Unfold all",
+            "A row for each joint, in the turn map and the list of joints",
+            Some(alt(Key::Equals)),
+            CLIP,
+        ),
+        entry(
+            V,
             A::WholeTime,
             "Show all time",
             "The whole clip from left to right",
@@ -364,6 +391,42 @@ pub const TABLE: &[Entry] = &{
             SNAG,
         )
         .switch(|now| now.snag_is_left),
+        entry(
+            S,
+            A::LookAtMend,
+            "Look at mend",
+            "Show the chosen snag mended, in figure and curves, before it is accepted",
+            Some(ctrl(Key::K)),
+            CLIP,
+        )
+        .switch(|now| now.looks)
+        .group(),
+        entry(S, A::NoLimits, "Hold against no limits", "Joints may turn as they like", None, CLIP)
+            .switch(|now| now.limits.is_none())
+            .group(),
+        entry(
+            S,
+            A::AdultLimits,
+            "Hold against adult limits",
+            "Population norms for human figures, put on by what each joint is",
+            None,
+            CLIP,
+        )
+        .switch(|now| now.limits.as_deref() == Some("adult")),
+        entry(
+            S,
+            A::LearnLimits,
+            "Learn limits from this clip",
+            "What each joint does in the clip with its snags mended, and some margin",
+            None,
+            CLIP,
+        )
+        .switch(|now| now.limits.as_deref() == Some(LEARNED)),
+        entry(S, A::LimitsFile, "Limits from a file…", "A table (.csv) or file (.ron) of limits", None, CLIP),
+        entry(S, A::IsLoop, "Treat clip as a loop", "Also look whether the end meets the start", None, CLIP)
+            .switch(|now| now.search.is_loop),
+        entry(S, A::FindSlides, "Look for sliding feet", "Also look for planted feet that move", None, CLIP)
+            .switch(|now| now.search.finds_slides),
         entry(P, A::Play, "Play", "Play or pause", Some(plain(Key::Space)), CLIP)
             .switch(|now| now.is_playing),
         entry(P, A::StepBack, "Frame back", "One frame back", Some(plain(Key::ArrowLeft)), CLIP).group(),
@@ -459,6 +522,40 @@ pub const TABLE: &[Entry] = &{
             "The chosen stretch of time from left to right",
             Some(alt(Key::Num9)),
             |now| now.has_chosen_span,
+        ),
+        entry(P, A::AddMarker, "Add marker", "A named moment at the playhead", Some(ctrl(Key::J)), CLIP)
+            .group(),
+        entry(
+            P,
+            A::RenameMarker,
+            "Rename marker…",
+            "Another name for the marker at the playhead, or the last before it",
+            Some(ctrl_shift(Key::J)),
+            MARKERS,
+        ),
+        entry(
+            P,
+            A::RemoveMarker,
+            "Remove marker",
+            "Take away the marker at the playhead, or the last before it",
+            Some(alt(Key::J)),
+            MARKERS,
+        ),
+        entry(
+            P,
+            A::PreviousMarker,
+            "Previous marker",
+            "Jump to the marker before",
+            Some(alt(Key::ArrowLeft)),
+            MARKERS,
+        ),
+        entry(
+            P,
+            A::NextMarker,
+            "Next marker",
+            "Jump to the marker after",
+            Some(alt(Key::ArrowRight)),
+            MARKERS,
         ),
         entry(H, A::Shortcuts, "Shortcuts", "All actions and their keys", Some(plain(Key::F1)), ALWAYS),
         entry(H, A::WhatsNew, "What's new", "What has changed from version to version", None, ALWAYS),

@@ -5,14 +5,15 @@ use std::sync::Arc;
 
 use egui::Context;
 
-use super::super::bench::{Evaluated, FromClips, Path3, Project, SourceState, file_name};
+use super::super::bench::{Evaluated, FromClips, Path3, Project, Searched, SourceState, file_name};
 use super::super::file_picker::{Picked, Purpose};
 use super::super::panels::{Dialog, Form, Level, Message};
-use super::super::view_models::{CurveSet, CurveView, HeatKind, HeatMap};
+use super::super::view_models::{CurveSet, CurveView, HeatMap, HeatWish};
 use super::super::window::Window;
 use super::files::{Exported, OpenedScene};
 use crate::clip::Clip;
 use crate::exchange::Source;
+use crate::limit::Limits;
 use crate::scene::{Edit, Revision, SourceRef};
 use crate::snag::Snag;
 
@@ -43,8 +44,19 @@ pub(crate) enum Answer {
         serial: u64,
         /// For which clip.
         work: usize,
+        /// What was looked for.
+        searched: Box<Searched>,
         /// All of them.
         snags: Arc<Vec<Snag>>,
+    },
+    /// Limits for the clip's joints were found, or not.
+    Limits {
+        /// For which project.
+        serial: u64,
+        /// For which clip.
+        work: usize,
+        /// The limits and what is to be told about them, or why there are none.
+        result: Result<(Arc<Limits>, Option<String>), String>,
     },
     /// Passes were run.
     Evaluated {
@@ -56,7 +68,7 @@ pub(crate) enum Answer {
         evaluated: Box<Evaluated>,
     },
     /// The turn map.
-    Heat(FromClips<HeatKind, Arc<HeatMap>>),
+    Heat(FromClips<HeatWish, Arc<HeatMap>>),
     /// The curves.
     Curves(FromClips<(usize, CurveView), Arc<CurveSet>>),
     /// The way of a tip.
@@ -114,11 +126,14 @@ impl Window {
                 self.dialog = Some(Dialog::Columns(path, names));
             }
             Answer::SceneOpened(result) => self.take_scene(result),
-            Answer::Surveyed { serial, work, snags } => {
+            Answer::Limits { serial, work, result } => self.take_limits(serial, work, result),
+            Answer::Surveyed { serial, work, searched, snags } => {
                 if let Some(findings) =
                     self.project_mut(serial).and_then(|project| project.findings.get_mut(work))
                 {
                     findings.snags = Some(snags);
+                    findings.searched = Some(*searched);
+                    findings.search_is_stopped = false;
                 }
             }
             Answer::Evaluated { serial, work, evaluated } => {
@@ -156,7 +171,7 @@ impl Window {
         }
     }
 
-    fn project_mut(&mut self, serial: u64) -> Option<&mut Project> {
+    pub(super) fn project_mut(&mut self, serial: u64) -> Option<&mut Project> {
         self.bench.project.as_mut().filter(|project| project.serial == serial)
     }
 

@@ -2,9 +2,9 @@
 
 use std::sync::Arc;
 
-use super::super::bench::{Evaluated, FromClips};
+use super::super::bench::{Evaluated, FromClips, Searched};
 use super::super::jobs::Slot;
-use super::super::view_models::{CurveView, HeatKind, changes, curve_set, heat_map, tip_path};
+use super::super::view_models::{CurveView, HeatKind, HeatWish, changes, curve_set, heat_map, tip_path};
 use super::super::window::Window;
 use super::answers::Answer;
 use crate::clip::Clip;
@@ -17,12 +17,12 @@ type Behind = Vec<(usize, Vec<Pass>)>;
 /// The last order of each purpose, so that none is given twice.
 #[derive(Debug, Default)]
 pub(crate) struct Asked {
-    /// Project and work.
-    pub survey: Option<(u64, usize)>,
+    /// Project, work and what is looked for.
+    pub survey: Option<(u64, usize, Searched)>,
     /// Project, work, passes, and those of other clips that they need.
     pub evaluation: Option<(u64, usize, Vec<Pass>, Behind)>,
     /// Clips and colours.
-    pub heat: Option<FromClips<HeatKind, ()>>,
+    pub heat: Option<FromClips<HeatWish, ()>>,
     /// Clips, joint and view.
     pub curves: Option<FromClips<(usize, CurveView), ()>>,
     /// Clips and joint.
@@ -49,17 +49,23 @@ impl Window {
     }
 
     fn order_survey(&mut self, source: &Arc<Clip>) {
-        let Some(findings) = self.bench.findings() else { return };
+        let (Some(findings), Some(own)) = (self.bench.findings(), self.bench.work()) else { return };
         let (serial, work) = (self.serial(), self.bench.session.work);
-        if findings.snags.is_some() || findings.search_is_stopped || self.asked.survey == Some((serial, work))
-        {
+        let searched = Searched::of(own);
+        let is_done = findings.searched.as_ref() == Some(&searched)
+            && (findings.snags.is_some() || findings.search_is_stopped);
+        let order = (serial, work, searched);
+        if is_done || self.asked.survey.as_ref() == Some(&order) {
             return;
         }
-        self.asked.survey = Some((serial, work));
+        let searched = order.2.clone();
+        self.asked.survey = Some(order);
         let clip = Arc::clone(source);
         self.jobs.submit(Slot::Survey, move |watch| {
-            let found = survey(&clip, &SurveyOptions::default(), watch).ok()?;
-            Some(Answer::Surveyed { serial, work, snags: Arc::new(found.snags) })
+            let options = SurveyOptions { kinds: searched.search.kinds(), limits: searched.limits.clone() };
+            let found = survey(&clip, &options, watch).ok()?;
+            let searched = Box::new(searched);
+            Some(Answer::Surveyed { serial, work, searched, snags: Arc::new(found.snags) })
         });
     }
 
@@ -70,7 +76,7 @@ impl Window {
         let behind = project.passes_behind(work);
         let is_unchanged =
             |passes: &[Pass]| known.is_some_and(|known| known.passes == passes && known.behind == behind);
-        if self.bench.preview.is_none() && self.bench.work().is_some_and(|work| is_unchanged(&work.passes)) {
+        if !self.bench.is_trying() && self.bench.work().is_some_and(|work| is_unchanged(&work.passes)) {
             return;
         }
         let passes = self.bench.passes();
@@ -93,21 +99,38 @@ impl Window {
     }
 
     fn order_heat(&mut self, source: &Arc<Clip>, result: &Arc<Clip>) {
-        let kind = self.bench.session.heat_kind;
-        let is_there = self.bench.heat.as_ref().is_some_and(|heat| heat.is_of(source, result, &kind));
-        let is_ordered = self.asked.heat.as_ref().is_some_and(|asked| asked.is_of(source, result, &kind));
+        let wish = self.heat_wish(result);
+        let is_there = self.bench.heat.as_ref().is_some_and(|heat| heat.is_of(source, result, &wish));
+        let is_ordered = self.asked.heat.as_ref().is_some_and(|asked| asked.is_of(source, result, &wish));
         if is_there || is_ordered {
             return;
         }
         let order =
-            FromClips { source: Arc::clone(source), result: Arc::clone(result), parameters: kind, value: () };
+            FromClips { source: Arc::clone(source), result: Arc::clone(result), parameters: wish, value: () };
         self.asked.heat = Some(order.clone());
         let known = self.bench.heat.clone();
         self.jobs.submit(Slot::Heat, move |watch| {
             let known = known.as_ref().map(|known| (&*known.source, &*known.result, &*known.value));
-            let value = heat_map(&order.source, &order.result, kind, known, watch).ok()?;
+            let value = heat_map(&order.source, &order.result, &order.parameters, known, watch).ok()?;
             Some(Answer::Heat(order.with(Arc::new(value))))
         });
+    }
+
+    /// What the turn map is to show. Limits are those of the source's joints: on another skeleton they go by the labels.
+    fn heat_wish(&self, result: &Arc<Clip>) -> HeatWish {
+        let kind = self.bench.session.heat_kind;
+        let own = self.bench.work().and_then(|work| work.limits.as_ref());
+        let limits = own.filter(|_| kind == HeatKind::LimitUse).map(|limits| match self.bench.source() {
+            Some(source) if !source.has_skeleton_of(result) => {
+                let now = |joint: usize| {
+                    let is_there = joint < source.skeleton.len();
+                    is_there.then(|| result.skeleton.find(source.skeleton.label(joint))).flatten()
+                };
+                Arc::new(limits.renumbered(&now))
+            }
+            _ => Arc::clone(limits),
+        });
+        HeatWish { kind, limits }
     }
 
     fn order_curves(&mut self, source: &Arc<Clip>, result: &Arc<Clip>) {

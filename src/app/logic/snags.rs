@@ -88,6 +88,7 @@ impl Window {
         if let Some(findings) = self.bench.project.as_mut().and_then(|project| project.findings.get_mut(work))
         {
             findings.snags = None;
+            findings.searched = None;
             findings.search_is_stopped = false;
         }
     }
@@ -96,11 +97,13 @@ impl Window {
     pub(super) fn stop(&mut self, slot: Slot) {
         self.jobs.cancel(slot);
         let work = self.bench.session.work;
+        let searched = self.bench.work().map(super::super::bench::Searched::of);
         if slot == Slot::Survey
             && let Some(findings) =
                 self.bench.project.as_mut().and_then(|project| project.findings.get_mut(work))
         {
             findings.search_is_stopped = true;
+            findings.searched = searched;
         }
         self.tell(Message::note(format!("{}: stopped", slot.label())));
     }

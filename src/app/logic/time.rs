@@ -1,14 +1,18 @@
 //! What is chosen to work on: joints and a stretch of time.
 
 use super::super::commands::TimeCommand;
-use super::super::view_models::{TimeChoice, TimeWindow};
+use super::super::view_models::{TimeChoice, TimeWindow, limb_starts};
 use super::super::window::Window;
+use super::limits::LimitsFrom;
 
 impl Window {
     /// Does what a panel over time asked for.
     pub(super) fn run_time(&mut self, command: TimeCommand) {
         match command {
             TimeCommand::Choose(choice) => self.choose(choice),
+            TimeCommand::ReadLimits(path) => self.work_out_limits(LimitsFrom::File(path)),
+            TimeCommand::NameMarker(at, name) => self.name_marker(at, &name),
+            TimeCommand::AskMarkerName(at) => self.ask_marker_name(at),
         }
     }
 
@@ -58,6 +62,12 @@ impl Window {
         }
         let span_secs = self.bench.session.choice.span_secs;
         self.choose(TimeChoice { span_secs, ..TimeChoice::of_joints(found) });
+    }
+
+    /// Folds every limb to one row, or shows all joints.
+    pub(super) fn fold_limbs(&mut self, folds: bool) {
+        let Some(clip) = self.bench.result() else { return };
+        self.bench.session.folded = if folds { limb_starts(&clip.skeleton) } else { Default::default() };
     }
 
     /// Plays the chosen stretch alone, or all again.

@@ -8,14 +8,15 @@ use egui::{
     pos2, vec2,
 };
 
-use super::super::commands::{Action, Command};
-use super::super::pictures::{MapKey, on_pixels};
+use super::super::commands::{Action, Command, TimeCommand};
+use super::super::pictures::{MapKey, RowsKey, on_pixels};
 use super::super::theme::{GUTTER_WIDTH, INSET, Look, RULER_HEIGHT, TIME_MARGIN, color32};
 use super::super::view_models::{
-    HeatKind, HeatMap, SnagState, degrees, rotation_at, seconds, ticks, worst_first,
+    HeatKind, HeatMap, MapRow, SnagState, TimeChoice, counted, degrees, map_rows, rotation_at, seconds, ticks,
 };
 use super::super::widgets::{
-    TimeAxis, focus_ring, hint, letter_plate, playhead, read_out, scrub_and_zoom, segment, strip,
+    Icon, TimeAxis, focus_ring, hint, letter_plate, paint_icon, playhead, read_out, scrub_and_zoom, segment,
+    strip,
 };
 use super::Scope;
 use crate::clip::Clip;
@@ -29,10 +30,12 @@ pub(crate) fn turn_map_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     strip(ui, "Turn map", |ui| {
         if let Some(heat) = &heat {
             legend(ui, &scope.look, heat);
-            ui.add_space(14.0);
+            ui.add_space(12.0);
         }
         segment(ui, "Worst first", Action::WorstFirst, scope.now, scope.out);
-        ui.add_space(10.0);
+        fold_switch(ui, scope);
+        ui.add_space(8.0);
+        segment(ui, "Limits", Action::HeatLimitUse, scope.now, scope.out);
         segment(ui, "Change", Action::HeatChange, scope.now, scope.out);
         segment(ui, "Turn rate", Action::HeatTurnRate, scope.now, scope.out);
     });
@@ -61,31 +64,78 @@ pub(crate) fn turn_map_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     ui.allocate_rect(area, Sense::hover());
 }
 
-/// From cold to hot, with numbers.
+/// Folds all limbs, or unfolds all, whichever is not so yet.
+fn fold_switch(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let folds = scope.bench.session.folded.is_empty();
+    let action = if folds { Action::FoldLimbs } else { Action::UnfoldLimbs };
+    segment(ui, if folds { "Fold" } else { "Unfold" }, action, scope.now, scope.out);
+}
+
+/// From cold to hot, with numbers at both ends and in the middle.
 fn legend(ui: &mut Ui, look: &Look, heat: &HeatMap) {
     let font = FontId::proportional(11.5);
     let unit = heat.kind.unit();
-    let top = format!("{}{unit}", heat.scale.top);
-    let size = ui.painter().layout_no_wrap(top.clone(), font.clone(), look.faint).size();
-    let (bounds, response) = ui.allocate_exact_size(vec2(86.0 + size.x, 18.0), Sense::hover());
-    response.widget_info(|| WidgetInfo::labeled(Role::Label, true, format!("Colours from 0 to {top}")));
+    let value = |share: f32| {
+        let value = heat.scale.value(share);
+        if value < 10.0 { format!("{}", (value * 10.0).round() / 10.0) } else { format!("{value:.0}") }
+    };
+    let words = ["0".to_owned(), value(0.5), format!("{}{unit}", value(1.0))];
+    let widths = words
+        .each_ref()
+        .map(|words| ui.painter().layout_no_wrap(words.clone(), font.clone(), look.faint).size().x);
+    let half = 30.0;
+    let (bounds, response) =
+        ui.allocate_exact_size(vec2(widths.iter().sum::<f32>() + 2.0 * half + 16.0, 18.0), Sense::hover());
+    let said = format!("Colours from 0 over {} to {}", words[1], words[2]);
+    response.widget_info(|| WidgetInfo::labeled(Role::Label, true, &said));
     let painter = ui.painter();
-    painter.text(bounds.left_center(), Align2::LEFT_CENTER, "0", font.clone(), look.faint);
-    let bar = Rect::from_min_size(bounds.left_center() + vec2(11.0, -4.0), vec2(68.0, 8.0));
-    let steps = 17;
-    for step in 0..steps {
-        let share = step as f32 / (steps - 1) as f32;
-        let left = bar.left() + step as f32 * bar.width() / steps as f32;
-        let cell = Rect::from_min_size(pos2(left, bar.top()), vec2(bar.width() / steps as f32, bar.height()));
-        painter.rect_filled(cell, 0.0, Look::heat(share));
+    let mut at = bounds.left();
+    let steps = 9;
+    for (place, words) in words.iter().enumerate() {
+        let middle = pos2(at, bounds.center().y);
+        painter.text(middle, Align2::LEFT_CENTER, words, font.clone(), look.faint);
+        at += widths[place] + 4.0;
+        if place == 2 {
+            break;
+        }
+        for step in 0..steps {
+            let share = (place as f32 + (step as f32 + 0.5) / steps as f32) / 2.0;
+            let width = half / steps as f32;
+            let left = at + step as f32 * width;
+            let cell = Rect::from_min_size(pos2(left, bounds.center().y - 4.0), vec2(width + 0.5, 8.0));
+            painter.rect_filled(cell, 0.0, Look::heat(share));
+        }
+        at += half + 4.0;
     }
-    painter.text(pos2(bar.right() + 5.0, bounds.center().y), Align2::LEFT_CENTER, &top, font, look.faint);
     response.on_hover_text(match heat.kind {
         HeatKind::TurnRate => {
-            "Colour = how fast the joint turns. The scale is a square root, so slow motion shows"
+            "Colour = how fast the joint turns. The scale is a square root, so slow motion shows".to_owned()
         }
-        HeatKind::Change => "Colour = the turn between source and result. The scale is a square root",
+        HeatKind::Change => {
+            "Colour = the turn between source and result. The scale is a square root".to_owned()
+        }
+        HeatKind::LimitUse => format!(
+            "Colour = how much of its limit the joint uses; 100 % is at the limit. {}",
+            limits_words(heat)
+        ),
     });
+}
+
+/// Which limits the colours stand for.
+fn limits_words(heat: &HeatMap) -> String {
+    match (&heat.limits, &heat.trouble) {
+        (Some((limits, is_preset)), _) => {
+            let count = counted(limits.joints.len(), "joint");
+            let title = if limits.title.is_empty() { "no title" } else { &limits.title };
+            if *is_preset {
+                format!("No limits are set for this clip: the preset {title} is shown ({count})")
+            } else {
+                format!("Limits: {title} ({count})")
+            }
+        }
+        (None, Some(trouble)) => trouble.clone(),
+        (None, None) => String::new(),
+    }
 }
 
 /// Seconds and frames along the top; dragging there scrubs.
@@ -94,8 +144,16 @@ fn ruler_ui(ui: &mut Ui, ruler: Rect, axis: &TimeAxis, clip: &Clip, scope: &mut 
     let over_time = Rect::from_x_y_ranges(axis.span.expand(6.0), ruler.y_range());
     let response = ui.interact(over_time, ui.scope_id().with("ruler"), Sense::click_and_drag());
     response.widget_info(|| WidgetInfo::labeled(Role::Canvas, true, "Ruler"));
-    scrub_and_zoom(ui, &response, over_time, axis, clip, true, scope.out);
+    if !choosing(ui, &response, axis, None, scope) {
+        scrub_and_zoom(ui, &response, over_time, axis, clip, true, scope.out);
+    }
     let painter = ui.painter_at(ruler);
+    if let Some([from, to]) = scope.bench.session.choice.span_secs {
+        let x = Rangef::new(axis.x(from).max(axis.span.min), axis.x(to).min(axis.span.max));
+        if x.span() > 0.0 {
+            painter.rect_filled(Rect::from_x_y_ranges(x, ruler.y_range()), 0.0, look.chosen);
+        }
+    }
     let font = FontId::proportional(11.5);
     let left = ruler.left() + INSET;
     painter.text(pos2(left, ruler.top() + 9.0), Align2::LEFT_CENTER, "time", font.clone(), look.faint);
@@ -134,8 +192,15 @@ fn rows_ui(
     heat: &Arc<HeatMap>,
     scope: &mut Scope<'_>,
 ) {
-    let order: Vec<usize> =
-        if scope.bench.session.worst_first { worst_first(heat) } else { (0..heat.len()).collect() };
+    let key = RowsKey {
+        map: Arc::clone(heat),
+        clip: Arc::clone(clip),
+        folded: scope.bench.session.folded.clone(),
+        worst_first: scope.bench.session.worst_first,
+    };
+    let order = Arc::clone(scope.pictures.map_rows.get_or_compute(key, |key| {
+        Arc::new(map_rows(&key.clip.skeleton, &key.map, &key.folded, key.worst_first))
+    }));
     if order.is_empty() {
         hint(ui, "This skeleton has no joints");
         return;
@@ -158,7 +223,8 @@ fn rows_ui(
             let rows = Rows { top: top + first as f32 * row_height, height: row_height, visible, heat };
             if let Some(joint) = scope.bench.session.joint
                 && scope.pictures.scroll_to_joint == Some(joint)
-                && let Some(place) = order.iter().position(|&row| heat.joints[row] == joint)
+                && let Some(place) =
+                    order.iter().position(|row| row.members.iter().any(|&own| heat.joints[own] == joint))
             {
                 let row = Rect::from_min_size(
                     pos2(body.left(), top + place as f32 * row_height),
@@ -174,7 +240,7 @@ struct Rows<'a> {
     /// Where the first visible row begins on screen.
     top: f32,
     height: f32,
-    visible: &'a [usize],
+    visible: &'a [MapRow],
     heat: &'a Arc<HeatMap>,
 }
 
@@ -218,39 +284,16 @@ fn draw_rows(
     let painter = ui.painter().clone();
     painter.image(texture, bounds, Rect::from_min_max(pos2(0.0, 0.0), pos2(1.0, 1.0)), Color32::WHITE);
 
-    let chosen = scope.bench.session.joint;
-    let labels = Rangef::new(body.left(), axis.span.min);
-    for (place, &row) in rows.visible.iter().enumerate() {
-        let joint = rows.heat.joints[row];
-        let cell = rows.bounds(place, labels);
-        let is_chosen = chosen == Some(joint);
-        let response = ui.interact(cell, ui.scope_id().with(("map row", joint)), Sense::click());
-        let name = clip.skeleton.label(joint);
-        response.widget_info(|| WidgetInfo::selected(Role::Row, true, is_chosen, format!("Map row {name}")));
-        if response.clicked() {
-            scope.out.push(Command::ChooseJoint(Some(joint)));
-        }
-        focus_ring(ui, &response);
-        if is_chosen {
-            painter.rect_filled(cell, 0.0, look.chosen);
-            painter.rect_filled(Rect::from_min_size(cell.min, vec2(3.0, cell.height())), 0.0, look.selection);
-        } else if response.hovered() || scope.pictures.hovered == Some(joint) {
-            painter.rect_filled(cell, 0.0, look.hover);
-        }
-        let ink = if is_chosen { look.text } else { look.faint };
-        elided(&painter, cell.shrink2(vec2(INSET, 0.0)), name, ink);
-        if is_chosen {
-            let across = rows.bounds(place, axis.span);
-            painter.rect_stroke(across, 0.0, (1.0, look.selection), egui::StrokeKind::Outside);
-        }
-    }
+    labels_ui(ui, body, axis, clip, rows, scope);
+    choice_ui(&painter, body, axis, rows, scope);
     marks_ui(ui, axis, rows, scope);
     playhead(&painter, &look, axis, scope.bench.session.playback.playhead_secs, body.y_range());
 
     let over_time = Rect::from_x_y_ranges(axis.span, body.y_range()).intersect(ui.clip_rect());
     let response = ui.interact(over_time, ui.scope_id().with("turn map"), Sense::click_and_drag());
     response.widget_info(|| WidgetInfo::labeled(Role::Canvas, true, "Turn map rows"));
-    let pressed = ui.input(|input| input.pointer.primary_pressed());
+    let is_choosing = choosing(ui, &response, axis, Some(rows), scope);
+    let pressed = !is_choosing && ui.input(|input| input.pointer.primary_pressed());
     if (response.is_pointer_button_down_on() || response.clicked())
         && pressed
         && let Some(pointer) = response.interact_pointer_pos()
@@ -260,17 +303,182 @@ fn draw_rows(
         if let Some(index) = mark {
             scope.out.push(Command::ChooseSnag(index));
         } else {
-            let joint = rows.at(pointer.y).map(|place| rows.heat.joints[rows.visible[place]]);
+            let joint = rows.at(pointer.y).map(|place| rows.visible[place].joint);
             scope.out.extend(joint.map(|joint| Command::ChooseJoint(Some(joint))));
         }
     }
     // Going to a snag moves time under the pointer: the press that chose it must not scrub as well.
     let is_press = response.is_pointer_button_down_on() || response.clicked();
-    if !(scope.pictures.press_is_on_mark && is_press) {
+    if !is_choosing && !(scope.pictures.press_is_on_mark && is_press) {
         scrub_and_zoom(ui, &response, over_time, axis, clip, false, scope.out);
     }
     if let Some(pointer) = response.hover_pos() {
         hover_read_out(ui, pointer, axis, clip, rows, scope);
+    }
+}
+
+/// The names on the left: a click chooses the joint, the chevron folds what hangs on it.
+fn labels_ui(ui: &Ui, body: Rect, axis: &TimeAxis, clip: &Clip, rows: &Rows<'_>, scope: &mut Scope<'_>) {
+    let look = scope.look;
+    let painter = ui.painter().clone();
+    let chosen = scope.bench.session.joint;
+    let choice = scope.bench.session.choice.clone();
+    let labels = Rangef::new(body.left(), axis.span.min);
+    for (place, row) in rows.visible.iter().enumerate() {
+        let joint = row.joint;
+        let cell = rows.bounds(place, labels);
+        let stands_for = |joint: usize| row.members.iter().any(|&own| rows.heat.joints[own] == joint);
+        let is_chosen = chosen.is_some_and(stands_for);
+        let response = ui.interact(cell, ui.scope_id().with(("map row", joint)), Sense::click());
+        let name = clip.skeleton.label(joint);
+        response.widget_info(|| WidgetInfo::selected(Role::Row, true, is_chosen, format!("Map row {name}")));
+        if response.clicked() {
+            let adds = ui.input(|input| input.modifiers.command);
+            scope.out.push(if adds {
+                Command::Time(TimeCommand::Choose(toggled(&choice, row, rows)))
+            } else {
+                Command::ChooseJoint(Some(joint))
+            });
+        }
+        focus_ring(ui, &response);
+        if is_chosen {
+            painter.rect_filled(cell, 0.0, look.chosen);
+            painter.rect_filled(Rect::from_min_size(cell.min, vec2(3.0, cell.height())), 0.0, look.selection);
+        } else if response.hovered() || scope.pictures.hovered.is_some_and(stands_for) {
+            painter.rect_filled(cell, 0.0, look.hover);
+        }
+        let ink = if is_chosen { look.text } else { look.faint };
+        // Deep hierarchies must leave room for the name.
+        let indent = (row.depth as f32 * 6.0).min(0.35 * cell.width());
+        let chevron =
+            Rect::from_min_size(pos2(cell.left() + 5.0 + indent, cell.top()), vec2(14.0, cell.height()));
+        if row.has_children {
+            let response = ui.interact(chevron, ui.scope_id().with(("map fold", joint)), Sense::click());
+            let verb = if row.is_open { "Fold" } else { "Unfold" };
+            response
+                .widget_info(|| WidgetInfo::labeled(Role::Button, true, format!("{verb} {name} in the map")));
+            let icon = if row.is_open { Icon::ChevronDown } else { Icon::ChevronRight };
+            let ink = if response.hovered() { look.text } else { look.axis };
+            paint_icon(&painter, chevron.shrink2(vec2(2.0, 0.0)), icon, ink);
+            focus_ring(ui, &response);
+            if response.clicked() {
+                scope.out.push(Command::Fold(joint));
+            }
+        }
+        let mut words =
+            Rect::from_min_max(pos2(chevron.right() + 2.0, cell.top()), cell.max - vec2(INSET, 0.0));
+        let is_in_choice =
+            choice.joints.is_some() && row.members.iter().any(|&own| choice.has_joint(rows.heat.joints[own]));
+        if is_in_choice {
+            // A dot besides the undimmed row.
+            painter.circle_filled(pos2(cell.right() - INSET - 1.0, cell.center().y), 3.0, look.selection);
+            words.max.x -= 10.0;
+        }
+        if row.is_open || row.members.len() < 2 {
+            elided(&painter, words, name, ink);
+        } else {
+            elided(&painter, words, &format!("{name} +{}", row.members.len() - 1), ink);
+        }
+        if is_chosen {
+            let across = rows.bounds(place, axis.span);
+            painter.rect_stroke(across, 0.0, (1.0, look.selection), egui::StrokeKind::Outside);
+        }
+    }
+}
+
+/// The choice with a row taken in, or out where it was in.
+fn toggled(choice: &TimeChoice, row: &MapRow, rows: &Rows<'_>) -> TimeChoice {
+    let own: Vec<usize> = row.members.iter().map(|&member| rows.heat.joints[member]).collect();
+    let was_in = choice.joints.is_some() && own.iter().all(|&joint| choice.has_joint(joint));
+    let mut joints = choice.joints.clone().unwrap_or_default();
+    joints.retain(|joint| !own.contains(joint));
+    if !was_in {
+        joints.extend(own);
+    }
+    TimeChoice { span_secs: choice.span_secs, ..TimeChoice::of_joints(joints) }
+}
+
+/// Dragging with the command key held chooses a stretch of time, on rows their joints too; a mere click there takes a row in
+/// or out. Gives whether that is what the pointer does.
+fn choosing(
+    ui: &Ui,
+    response: &egui::Response,
+    axis: &TimeAxis,
+    rows: Option<&Rows<'_>>,
+    scope: &mut Scope<'_>,
+) -> bool {
+    let (has_key, pressed, released) = ui.input(|input| {
+        (input.modifiers.command, input.pointer.primary_pressed(), input.pointer.primary_released())
+    });
+    let Some(pointer) = response.interact_pointer_pos() else { return false };
+    let joint_at = |y: f32| {
+        rows.and_then(|rows| rows.at(y)).map(|place| rows.map_or(0, |rows| rows.visible[place].joint))
+    };
+    let is_own = response.is_pointer_button_down_on() || response.clicked();
+    if pressed && has_key && is_own {
+        scope.pictures.choosing = Some((axis.time(pointer.x), joint_at(pointer.y), pointer));
+    }
+    let Some((secs, joint, start)) = scope.pictures.choosing else { return false };
+    let is_drag = start.distance(pointer) > 4.0;
+    let choice = scope.bench.session.choice.clone();
+    if is_drag && (is_own || response.drag_stopped()) {
+        let mut joints = choice.joints.clone();
+        if let (Some(rows), Some(first)) = (rows, joint) {
+            let from = rows.visible.iter().position(|row| row.joint == first);
+            let to =
+                ((pointer.y - rows.top) / rows.height).floor().clamp(0.0, rows.visible.len() as f32 - 1.0);
+            // The row of the press may have been scrolled away.
+            let from = from.unwrap_or(to as usize);
+            let span = from.min(to as usize)..=from.max(to as usize);
+            let members = rows.visible[span].iter().flat_map(|row| &row.members);
+            joints = TimeChoice::of_joints(members.map(|&own| rows.heat.joints[own])).joints;
+        }
+        let next = TimeChoice { joints, span_secs: None }.between(secs, axis.time(pointer.x));
+        scope.out.push(Command::Time(TimeCommand::Choose(next)));
+    } else if released && is_own {
+        let row = rows.and_then(|rows| rows.at(start.y).map(|place| (rows, &rows.visible[place])));
+        scope.out.push(Command::Time(TimeCommand::Choose(match row {
+            Some((rows, row)) => toggled(&choice, row, rows),
+            None => TimeChoice { span_secs: None, ..choice },
+        })));
+    }
+    if released {
+        scope.pictures.choosing = None;
+    }
+    true
+}
+
+/// What is not chosen is dimmed; the ends of the stretch are lines with hooks inward.
+fn choice_ui(painter: &egui::Painter, body: Rect, axis: &TimeAxis, rows: &Rows<'_>, scope: &Scope<'_>) {
+    let (look, choice) = (&scope.look, &scope.bench.session.choice);
+    if choice.is_everything() {
+        return;
+    }
+    let veil = look.background.gamma_multiply(0.62);
+    let [from, to] = choice.span_secs.map_or([axis.span.min, axis.span.max], |[from, to]| {
+        [from, to].map(|secs| axis.x(secs).clamp(axis.span.min, axis.span.max))
+    });
+    for (place, row) in rows.visible.iter().enumerate() {
+        let is_in = row.members.iter().any(|&own| choice.has_joint(rows.heat.joints[own]));
+        let spans: &[Rangef] = if is_in {
+            &[Rangef::new(axis.span.min, from), Rangef::new(to, axis.span.max)]
+        } else {
+            &[axis.span]
+        };
+        for span in spans.iter().filter(|span| span.span() > 0.0) {
+            painter.rect_filled(rows.bounds(place, *span), 0.0, veil);
+        }
+    }
+    let Some(span) = choice.span_secs else { return };
+    for (secs, inward) in span.into_iter().zip([1.0_f32, -1.0]) {
+        if !axis.window.contains(secs) {
+            continue;
+        }
+        let x = axis.x(secs);
+        painter.vline(x, body.y_range(), (1.5, look.selection));
+        for y in [body.top() + 1.0, body.bottom() - 1.0] {
+            painter.hline(x.min(x + 5.0 * inward)..=x.max(x + 5.0 * inward), y, (2.0, look.selection));
+        }
     }
 }
 
@@ -283,12 +491,12 @@ fn heat_image(key: &MapKey, clip: &Clip, look: &Look, [width, height]: [usize; 2
     let frames: Vec<usize> =
         (0..=width).map(|column| clip.grid.frame(key.window.time(column as f64 / width as f64))).collect();
     let n_rows = key.rows.len().max(1);
-    for (place, &row) in key.rows.iter().enumerate() {
+    for (place, row) in key.rows.iter().enumerate() {
         let (top, bottom) = (place * height / n_rows, (place + 1) * height / n_rows);
         let line: Vec<Color32> = (0..width)
             .map(|column| {
                 let range = frames[column]..frames[column + 1].max(frames[column] + 1);
-                colors[usize::from(key.map.code(row, range))]
+                colors[usize::from(row.code(&key.map, &range))]
             })
             .collect();
         // The last line stays background: it parts the rows.
@@ -322,8 +530,10 @@ struct Mark {
 
 fn marks(axis: &TimeAxis, rows: &Rows<'_>, scope: &Scope<'_>) -> Vec<Mark> {
     let mut place_of = vec![None; rows.heat.joints.iter().max().map_or(0, |last| last + 1)];
-    for (place, &row) in rows.visible.iter().enumerate() {
-        place_of[rows.heat.joints[row]] = Some(place);
+    for (place, row) in rows.visible.iter().enumerate() {
+        for &member in &row.members {
+            place_of[rows.heat.joints[member]] = Some(place);
+        }
     }
     let chosen = scope.bench.chosen_snag();
     let mut last: Vec<Option<usize>> = vec![None; rows.visible.len()];
@@ -394,11 +604,13 @@ fn hover_read_out(
 ) {
     let Some(place) = rows.at(pointer.y) else { return };
     let look = scope.look;
-    let joint = rows.heat.joints[rows.visible[place]];
-    scope.out.push(Command::HoverJoint(joint));
+    let row = &rows.visible[place];
     let time = axis.time(pointer.x).clamp(0.0, clip.duration_secs);
     let frame = clip.grid.frame(time);
     let at = clip.grid.time(frame);
+    // Of a folded limb the hottest joint is told.
+    let joint = row.hottest(rows.heat, &(frame..frame + 1));
+    scope.out.push(Command::HoverJoint(joint));
     let value = match rows.heat.kind {
         HeatKind::TurnRate => {
             let before = clip.grid.time(frame.saturating_sub(1));
@@ -412,12 +624,20 @@ fn hover_read_out(
             });
             format!("{} from the source", degrees(change))
         }
+        HeatKind::LimitUse => match &rows.heat.limits {
+            Some((limits, _)) if limits.get(joint).is_some() => {
+                let own = rows.heat.joints.iter().position(|&own| own == joint).unwrap_or(0);
+                format!("{:.0} % of its limit", rows.heat.value(own, frame))
+            }
+            _ => "no limit".to_owned(),
+        },
     };
-    let mut lines = vec![
-        (clip.skeleton.label(joint).to_owned(), look.text),
-        (format!("{}  frame {frame}", seconds(at)), look.faint),
-        (value, look.text),
-    ];
+    let mut name = clip.skeleton.label(joint).to_owned();
+    if row.members.len() > 1 {
+        name = format!("{name} (hottest of {})", row.members.len());
+    }
+    let mut lines =
+        vec![(name, look.text), (format!("{}  frame {frame}", seconds(at)), look.faint), (value, look.text)];
     if let Some(index) = mark_at(pointer, axis, rows, scope) {
         let (snag, state) = (&scope.bench.snags()[index], scope.states[index]);
         let words = format!("{} {}, {}", snag.kind.letter(), snag.kind, state.word());

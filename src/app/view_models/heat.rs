@@ -1,8 +1,10 @@
 //! The turn map: for each joint and frame how fast it turns, or how far the result is from the source.
 
 use std::ops::Range;
+use std::sync::Arc;
 
 use crate::clip::{Clip, turns_between};
+use crate::limit::{Limits, adult};
 use crate::snag::{Cancelled, Progress};
 
 /// What the colours of the turn map stand for.
@@ -12,6 +14,8 @@ pub enum HeatKind {
     TurnRate,
     /// Degrees between source and result.
     Change,
+    /// Percent of what the joint's limit allows, of the result.
+    LimitUse,
 }
 
 impl HeatKind {
@@ -20,6 +24,7 @@ impl HeatKind {
         match self {
             Self::TurnRate => "Turn rate",
             Self::Change => "Change",
+            Self::LimitUse => "Use of limits",
         }
     }
 
@@ -28,8 +33,18 @@ impl HeatKind {
         match self {
             Self::TurnRate => "°/s",
             Self::Change => "°",
+            Self::LimitUse => " %",
         }
     }
+}
+
+/// What a turn map is wanted of.
+#[derive(Clone, Debug, PartialEq)]
+pub struct HeatWish {
+    /// What its colours stand for.
+    pub kind: HeatKind,
+    /// The limits of the clip's work, for [`HeatKind::LimitUse`]; with none the preset for adults is tried.
+    pub limits: Option<Arc<Limits>>,
 }
 
 /// One joint's row: a code for each frame, and the largest of each [`FACTOR`] of them at each level above.
@@ -79,8 +94,12 @@ pub struct HeatMap {
     pub kind: HeatKind,
     /// The joints in the order of the skeleton.
     pub joints: Vec<usize>,
-    /// The value that gets the hottest colour, in degrees (a second).
+    /// The value that gets the hottest colour, in degrees (a second) or percent.
     pub scale: HeatScale,
+    /// The limits that were held against, and whether they are the preset because the clip has none of its own.
+    pub limits: Option<(Arc<Limits>, bool)>,
+    /// Why there is nothing to show.
+    pub trouble: Option<String>,
     rows: Vec<Row>,
     worst: Vec<f32>,
 }
@@ -88,19 +107,22 @@ pub struct HeatMap {
 /// From values to shares of the colour scale.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct HeatScale {
-    /// The hottest value that is told apart, in degrees (a second).
+    /// The hottest value that is told apart, in degrees (a second) or percent.
     pub top: f32,
+    /// Equal steps of value are equal steps of colour.
+    pub is_even: bool,
 }
 
 impl HeatScale {
-    /// The share of the colour scale for a value: a square root, so that slow motion shows beside fast.
+    /// The share of the colour scale for a value: a square root, so that slow motion shows beside fast; use of limits is even.
     pub fn share(&self, value: f32) -> f32 {
-        (value / self.top).clamp(0.0, 1.0).sqrt()
+        let share = (value / self.top).clamp(0.0, 1.0);
+        if self.is_even { share } else { share.sqrt() }
     }
 
     /// The value at a share of the colour scale.
     pub fn value(&self, share: f32) -> f32 {
-        share * share * self.top
+        if self.is_even { share * self.top } else { share * share * self.top }
     }
 }
 
@@ -146,6 +168,11 @@ impl HeatMap {
         self.rows[row].largest(frames)
     }
 
+    /// The value of a row at a frame, as finely as a code tells it.
+    pub fn value(&self, row: usize, frame: usize) -> f32 {
+        decode(self.rows[row].largest(frame..frame + 1))
+    }
+
     /// The hottest value of a row.
     pub fn worst(&self, row: usize) -> f32 {
         self.worst[row]
@@ -160,13 +187,24 @@ impl HeatMap {
 pub fn heat_map(
     source: &Clip,
     result: &Clip,
-    kind: HeatKind,
+    wish: &HeatWish,
     known: Option<(&Clip, &Clip, &HeatMap)>,
     progress: &dyn Progress,
 ) -> Result<HeatMap, Cancelled> {
+    let kind = wish.kind;
     let joints: Vec<usize> = result.skeleton.listed().collect();
+    let (mut limits, mut trouble) = (None, None);
+    if kind == HeatKind::LimitUse {
+        match &wish.limits {
+            Some(own) => limits = Some((Arc::clone(own), false)),
+            None => match adult::limits_for(result) {
+                Ok(preset) => limits = Some((Arc::new(preset.limits), true)),
+                Err(why) => trouble = Some(why.to_string()),
+            },
+        }
+    }
     let known = known.filter(|(old_source, _, map)| {
-        std::ptr::eq(*old_source, source) && map.kind == kind && map.joints == joints
+        std::ptr::eq(*old_source, source) && map.kind == kind && map.joints == joints && map.limits == limits
     });
     let (mut rows, mut worst, mut all) = (Vec::new(), Vec::new(), [0_usize; 256]);
     for (place, &joint) in joints.iter().enumerate() {
@@ -181,6 +219,7 @@ pub fn heat_map(
                 let values = match kind {
                     HeatKind::TurnRate => rates(result, joint),
                     HeatKind::Change => differences(source, result, joint),
+                    HeatKind::LimitUse => uses(limits.as_ref().map(|(own, _)| &**own), result, joint),
                 };
                 let codes = values.iter().map(|&value| code(value)).collect();
                 (Row::new(codes), values.into_iter().fold(0.0, f32::max))
@@ -195,8 +234,23 @@ pub fn heat_map(
     let top = match kind {
         HeatKind::TurnRate => quantile(&all, 0.998).max(30.0),
         HeatKind::Change => worst.iter().copied().fold(1.0, f32::max),
+        HeatKind::LimitUse => MOST_USE,
     };
-    Ok(HeatMap { kind, joints, scale: HeatScale { top: round_up(top) }, rows, worst })
+    let is_even = kind == HeatKind::LimitUse;
+    let scale = HeatScale { top: if is_even { top } else { round_up(top) }, is_even };
+    Ok(HeatMap { kind, joints, scale, limits, trouble, rows, worst })
+}
+
+/// The hottest colour of the use of limits, in percent: beyond the limit it goes on getting hotter for a while.
+const MOST_USE: f32 = 125.0;
+
+/// Percent of what the limit allows at each frame; 0 for a joint without a limit.
+fn uses(limits: Option<&Limits>, clip: &Clip, joint: usize) -> Vec<f32> {
+    let own = limits.and_then(|limits| limits.use_at_frames(clip, joint));
+    own.map_or_else(
+        || vec![0.0; clip.grid.count()],
+        |own| own.into_iter().map(|share| (share * 100.0) as f32).collect(),
+    )
 }
 
 /// Degrees a second over the step that ends at each frame.

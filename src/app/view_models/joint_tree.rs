@@ -1,10 +1,8 @@
-//! The joints as a tree that folds, and in the order of their worst.
+//! The joints as a tree that folds.
 
 use std::collections::BTreeSet;
 
 use crate::skeleton::Skeleton;
-
-use super::heat::HeatMap;
 
 /// One row of the tree.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -45,13 +43,6 @@ pub fn tree_rows(skeleton: &Skeleton, folded: &BTreeSet<usize>) -> Vec<TreeRow> 
 
 fn roots(skeleton: &Skeleton) -> Vec<usize> {
     skeleton.listed().filter(|&joint| skeleton.parent_joint(joint).is_none()).collect()
-}
-
-/// Rows of a turn map with the hottest first; equals stay in the order of the skeleton.
-pub fn worst_first(map: &HeatMap) -> Vec<usize> {
-    let mut rows: Vec<usize> = (0..map.len()).collect();
-    rows.sort_by(|&a, &b| map.worst(b).total_cmp(&map.worst(a)));
-    rows
 }
 
 #[cfg(test)]

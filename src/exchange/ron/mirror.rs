@@ -4,9 +4,10 @@ use serde::{Deserialize, Serialize};
 
 pub(super) use super::super::limits::mirror::Joint as JointLimit;
 
-/// The newest version this program knows. 1 holds mends alone; 2 all other passes too. A scene is written in the oldest
+/// The newest version this program knows. 1 holds mends alone; 2 all other passes too; 3 markers and what else is looked
+/// for. A scene is written in the oldest
 /// version that holds it, so that an older program opens what it can.
-pub(super) const VERSION: u32 = 2;
+pub(super) const VERSION: u32 = 3;
 
 /// The first thing that is read: does this version know the rest?
 #[derive(Deserialize)]
@@ -58,6 +59,23 @@ pub(super) struct ClipWork {
     pub(super) left: Vec<Left>,
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub(super) limits: Option<Limits>,
+    /// `loop` and `slide`.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub(super) search: Vec<String>,
+    /// Seconds and name of each marker.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub(super) markers: Vec<(f64, String)>,
+}
+
+impl ClipWork {
+    /// The oldest version that knows it, its passes aside.
+    pub(super) fn version(&self) -> u32 {
+        match (self.search.is_empty() && self.markers.is_empty(), &self.limits) {
+            (false, _) => 3,
+            (true, Some(_)) => 2,
+            (true, None) => 1,
+        }
+    }
 }
 
 #[derive(Serialize, Deserialize)]

@@ -4,7 +4,7 @@ use std::collections::{BTreeMap, BTreeSet};
 use std::path::{Component, Path, PathBuf};
 use std::sync::Arc;
 
-use crate::scene::{ClipWork, Document, Others, Pass, PassId, Reading, SnagMark, SourceRef};
+use crate::scene::{ClipWork, Document, Marker, Others, Pass, PassId, Reading, SnagMark, SourceRef};
 use crate::skeleton::{RestChoice, Skeleton};
 
 use super::super::csv::{NamedColumns, TimeUnit};
@@ -153,6 +153,10 @@ pub fn from_text(path: &Path, text: &str) -> Result<SceneFile, SceneError> {
     Ok(file)
 }
 
+/// The words for what is looked for beside the usual kinds.
+const LOOP: &str = "loop";
+const SLIDE: &str = "slide";
+
 fn work_from(clip: mirror::ClipWork) -> Result<(ClipWork, WorkLabels), String> {
     let mut labels = WorkLabels::default();
     let mut work = ClipWork::new(clip.source, clip.clip, clip.name);
@@ -160,6 +164,20 @@ fn work_from(clip: mirror::ClipWork) -> Result<(ClipWork, WorkLabels), String> {
         work.limits = Some(Arc::new(limits_from(limits)?));
         labels.limits = limits.joints.iter().map(|(joint, label, _)| (*joint, label.clone())).collect();
     }
+    for word in clip.search {
+        match word.as_str() {
+            LOOP => work.search.is_loop = true,
+            SLIDE => work.search.finds_slides = true,
+            other => return Err(format!("search: expected {LOOP} or {SLIDE}, found `{other}`")),
+        }
+    }
+    for (secs, name) in clip.markers {
+        if !secs.is_finite() {
+            return Err(format!("markers: expected seconds, found {secs} at `{name}`"));
+        }
+        work.markers.push(Marker { secs, name });
+    }
+    work.markers.sort_by(|a, b| a.secs.total_cmp(&b.secs));
     for pass in clip.passes {
         let mut own: BTreeMap<usize, String> = pass.joints.into_iter().collect();
         if let mirror::Step::Mend { snags, .. } = &pass.step {
@@ -237,12 +255,17 @@ pub fn to_text(
             })
             .collect(),
         limits: work.limits.as_ref().map(|limits| limits_to(limits, &|joint| label(index, 0, joint))),
+        search: [(work.search.is_loop, LOOP), (work.search.finds_slides, SLIDE)]
+            .into_iter()
+            .filter_map(|(on, word)| on.then(|| word.to_owned()))
+            .collect(),
+        markers: work.markers.iter().map(|marker| (marker.secs, marker.name.clone())).collect(),
     });
     let clips: Vec<mirror::ClipWork> = clips.collect();
     let versions = clips.iter().flat_map(|clip| &clip.passes).map(|pass| pass.step.version());
-    let has_limits = clips.iter().any(|clip| clip.limits.is_some());
     let versions = versions.chain(sources.iter().map(mirror::Source::version));
-    let turnwright_scene = versions.max().unwrap_or(1).max(if has_limits { 2 } else { 1 });
+    let versions = versions.chain(clips.iter().map(mirror::ClipWork::version));
+    let turnwright_scene = versions.max().unwrap_or(1);
     let scene = mirror::Saved { turnwright_scene, sources, clips };
     let pretty = ron::ser::PrettyConfig::new().depth_limit(7).struct_names(false).new_line("\n");
     let text = ron::ser::to_string_pretty(&scene, pretty)
@@ -307,7 +330,8 @@ mod tests {
     use crate::rotor::Bivector;
     use crate::rotor::Rotor;
     use crate::scene::{
-        KeysPass, MendPass, NoOthers, PassStep, PushPass, ReducePass, ResamplePass, Scope, SmoothPass,
+        KeysPass, MendPass, NoOthers, PassStep, PushPass, ReducePass, ResamplePass, Scope, SearchChoice,
+        SmoothPass,
     };
     use crate::snag::{Remedy, Snag, SnagKind};
 
@@ -391,6 +415,28 @@ mod tests {
             ("time=t,w=a,x=b,y=c,z=d", "t", "sources[0]: columns: expected columns as time=NAME,w=NAME"),
             ("\"ms\"", "\"h\"", "sources[0]: time_unit: expected s, ms or us, found `h`"),
             ("first-frame", "last", "sources[0]: rest: expected bind, defaults or first-frame, found `last`"),
+        ] {
+            let error = from_text(&path, &text.replace(right, wrong)).unwrap_err().to_string();
+            assert!(error.contains(message), "{error}");
+        }
+    }
+
+    #[test]
+    fn markers_and_what_is_looked_for_are_remembered() {
+        let folder = PathBuf::from("/somewhere");
+        let mut document = document(&folder);
+        let marker = |secs: f64, name: &str| Marker { secs, name: name.to_owned() };
+        document.works[0].markers = vec![marker(0.1 + 0.2, "left foot down"), marker(2.0, "turn \"away\"")];
+        document.works[0].search = SearchChoice { is_loop: true, finds_slides: true };
+        let path = folder.join("a.ron");
+        let text = to_text(&path, &document, &label).unwrap();
+        assert!(text.contains("turnwright_scene: 3,"), "an older program would not know them");
+        let back = from_text(&path, &text).unwrap().document;
+        assert_eq!(back.works[0].markers, document.works[0].markers);
+        assert_eq!(back.works[0].search, document.works[0].search);
+        for (right, wrong, message) in [
+            ("\"slide\"", "\"hop\"", "clips[0]: search: expected loop or slide, found `hop`"),
+            ("(2.0,", "(inf,", "clips[0]: markers: expected seconds, found inf"),
         ] {
             let error = from_text(&path, &text.replace(right, wrong)).unwrap_err().to_string();
             assert!(error.contains(message), "{error}");
@@ -482,7 +528,7 @@ mod tests {
             assert!(error.contains(expected), "{text}: {error}");
         };
         check("", "x.ron: line 1, column 1: expected a Turnwright scene");
-        check("(turnwright_scene: 99)", "expected scene version 2 or older, found 99");
+        check("(turnwright_scene: 99)", "expected scene version 3 or older, found 99");
         check(
             "(turnwright_scene: 1, sources: [], clips: [(source: 0, clip: 0, name: \"a\")])",
             "expected a source below 0, found 0",

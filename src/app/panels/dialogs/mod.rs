@@ -7,6 +7,7 @@ mod columns;
 mod export;
 mod form;
 mod history;
+mod marker;
 mod path;
 mod relocate;
 mod sheet;
@@ -49,6 +50,10 @@ pub(crate) enum Dialog {
     Export,
     /// Where a missing source is.
     Relocate(usize),
+    /// A file of limits.
+    LimitsPath,
+    /// A marker's name.
+    MarkerName(usize),
     /// What the columns of a CSV file are.
     Columns(PathBuf, Vec<String>),
     /// Which clip of several.
@@ -74,7 +79,7 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
         let wanted = match dialog {
             Dialog::Shortcuts => vec2(680.0, 560.0),
             Dialog::WhatsNew | Dialog::History => vec2(560.0, 460.0),
-            Dialog::Unsaved(_) => vec2(440.0, 160.0),
+            Dialog::Unsaved(_) | Dialog::MarkerName(_) => vec2(440.0, 160.0),
             _ => vec2(580.0, 460.0),
         };
         let size = wanted.min(room.max(vec2(200.0, 160.0)));
@@ -84,6 +89,10 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
         match dialog {
             Dialog::OpenPath => path::path_sheet(ui, "Open path", "Open", Purpose::Open, form, scope),
             Dialog::SavePath => path::path_sheet(ui, "Save scene as", "Save", Purpose::Save, form, scope),
+            Dialog::LimitsPath => {
+                path::path_sheet(ui, "Limits from a file", "Use", Purpose::Limits, form, scope)
+            }
+            Dialog::MarkerName(at) => marker::marker_sheet(ui, *at, form, scope),
             Dialog::Relocate(source) => relocate::relocate_sheet(ui, *source, form, scope),
             Dialog::Export => export::export_sheet(ui, form, scope),
             Dialog::Columns(path, names) => columns::columns_sheet(ui, path, names, form, scope),

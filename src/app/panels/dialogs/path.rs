@@ -4,7 +4,7 @@ use std::path::{Path, PathBuf};
 
 use egui::{Key, RichText, ScrollArea, TextEdit, Ui};
 
-use super::super::super::commands::Command;
+use super::super::super::commands::{Command, TimeCommand};
 use super::super::super::file_picker::Purpose;
 use super::super::Scope;
 use super::form::Form;
@@ -24,7 +24,11 @@ pub(super) fn path_sheet(
     scope: &mut Scope<'_>,
 ) {
     heading(ui, title);
-    let endings: &[&str] = if purpose == Purpose::Save { &[".ron"] } else { &ALL };
+    let endings: &[&str] = match purpose {
+        Purpose::Save => &[".ron"],
+        Purpose::Limits => &[".csv", ".ron"],
+        _ => &ALL,
+    };
     let mut meant = path_ui(ui, form, endings, 230.0, scope.look.faint);
     error_ui(ui, form, scope);
     let typed = form.path.trim().to_owned();
@@ -39,6 +43,7 @@ pub(super) fn path_sheet(
     if let Some(path) = meant {
         scope.out.push(match purpose {
             Purpose::Save => Command::SaveTo(path),
+            Purpose::Limits => Command::Time(TimeCommand::ReadLimits(path)),
             _ => Command::OpenFiles(vec![path]),
         });
     }
