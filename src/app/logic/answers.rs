@@ -11,9 +11,9 @@ use super::super::panels::{Dialog, Form, Level, Message};
 use super::super::view_models::{CurveSet, CurveView, HeatMap, HeatWish};
 use super::super::window::Window;
 use super::files::{Exported, OpenedScene};
+use super::limits::Fitted;
 use crate::clip::Clip;
 use crate::exchange::Source;
-use crate::limit::Limits;
 use crate::scene::{Edit, Revision, SourceRef};
 use crate::snag::Snag;
 
@@ -56,7 +56,7 @@ pub(crate) enum Answer {
         /// For which clip.
         work: usize,
         /// The limits and what is to be told about them, or why there are none.
-        result: Result<(Arc<Limits>, Option<String>), String>,
+        result: Fitted,
     },
     /// Passes were run.
     Evaluated {

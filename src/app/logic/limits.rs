@@ -15,6 +15,9 @@ use crate::mend::{SurveyOptions, survey};
 use crate::scene::{Edit, SearchChoice};
 use crate::snag::Progress;
 
+/// Limits and what is to be told about them, or why there are none.
+pub(crate) type Fitted = Result<(Arc<Limits>, Option<String>), String>;
+
 /// Where limits come from.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub(super) enum LimitsFrom {
@@ -28,11 +31,7 @@ pub(super) enum LimitsFrom {
 
 impl LimitsFrom {
     /// The limits for a clip and what is to be told about them; `None` when it is told to stop.
-    fn fit(
-        &self,
-        clip: &Clip,
-        watch: &dyn Progress,
-    ) -> Option<Result<(Arc<Limits>, Option<String>), String>> {
+    fn fit(&self, clip: &Clip, watch: &dyn Progress) -> Option<Fitted> {
         Some(match self {
             Self::Adult => match adult::limits_for(clip) {
                 Ok(own) => Ok((Arc::new(own.limits), Some(adult::CAUTION.to_owned()))),
@@ -77,12 +76,7 @@ impl Window {
         });
     }
 
-    pub(super) fn take_limits(
-        &mut self,
-        serial: u64,
-        work: usize,
-        result: Result<(Arc<Limits>, Option<String>), String>,
-    ) {
+    pub(super) fn take_limits(&mut self, serial: u64, work: usize, result: Fitted) {
         if self.project_mut(serial).is_none() {
             return;
         }

@@ -14,7 +14,7 @@ impl Window {
         let Some(work) = self.bench.work() else { return };
         let secs = self.bench.session.playback.playhead_secs;
         // The smallest number that no marker bears yet.
-        let name = (1..)
+        let name = (1..=work.markers.len() + 1)
             .map(|number| format!("Marker {number}"))
             .find(|name| work.markers.iter().all(|marker| marker.name != *name))
             .unwrap_or_default();

@@ -1,5 +1,7 @@
 //! What is chosen to work on: joints and a stretch of time.
 
+use std::collections::BTreeSet;
+
 use super::super::commands::TimeCommand;
 use super::super::view_models::{TimeChoice, TimeWindow, limb_starts};
 use super::super::window::Window;
@@ -67,7 +69,8 @@ impl Window {
     /// Folds every limb to one row, or shows all joints.
     pub(super) fn fold_limbs(&mut self, folds: bool) {
         let Some(clip) = self.bench.result() else { return };
-        self.bench.session.folded = if folds { limb_starts(&clip.skeleton) } else { Default::default() };
+        let folded = if folds { limb_starts(&clip.skeleton) } else { BTreeSet::new() };
+        self.bench.session.folded = folded;
     }
 
     /// Plays the chosen stretch alone, or all again.

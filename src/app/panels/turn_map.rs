@@ -99,7 +99,7 @@ fn legend(ui: &mut Ui, look: &Look, heat: &HeatMap) {
             break;
         }
         for step in 0..steps {
-            let share = (place as f32 + (step as f32 + 0.5) / steps as f32) / 2.0;
+            let share = 0.5 * (place as f32 + (step as f32 + 0.5) / steps as f32);
             let width = half / steps as f32;
             let left = at + step as f32 * width;
             let cell = Rect::from_min_size(pos2(left, bounds.center().y - 4.0), vec2(width + 0.5, 8.0));

@@ -90,7 +90,7 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
             Dialog::OpenPath => path::path_sheet(ui, "Open path", "Open", Purpose::Open, form, scope),
             Dialog::SavePath => path::path_sheet(ui, "Save scene as", "Save", Purpose::Save, form, scope),
             Dialog::LimitsPath => {
-                path::path_sheet(ui, "Limits from a file", "Use", Purpose::Limits, form, scope)
+                path::path_sheet(ui, "Limits from a file", "Use", Purpose::Limits, form, scope);
             }
             Dialog::MarkerName(at) => marker::marker_sheet(ui, *at, form, scope),
             Dialog::Relocate(source) => relocate::relocate_sheet(ui, *source, form, scope),
