@@ -4,10 +4,12 @@ use std::collections::BTreeMap;
 
 use glam::DVec3;
 
+use crate::rotor::Rotor;
+
 use super::figure::Figure;
 use super::limbs::{self, Reading};
+use super::name::Part;
 use super::pairs::{Pair, Pairs};
-use super::words::Part;
 
 /// Pairs of limbs that are looked at; a body has a handful.
 const MOST_PAIRS: usize = 24;
@@ -162,9 +164,10 @@ pub(super) fn plan(figure: &Figure<'_>, root: usize) -> Plan {
     }
 }
 
-/// Directions that may be up, with what speaks for each beforehand: every format here says +Y, and some files mean +Z.
+/// Directions that may be up, with what speaks for each beforehand: every format here says +Y, and some files mean +Z. Under a carrier that
+/// stands askew it is the carrier's axes, so that a figure is read the same however it is turned as a whole.
 fn ups(figure: &Figure<'_>, pairs: &[Pair], across: DVec3) -> Vec<(DVec3, f64)> {
-    let axes = [
+    let usual = [
         (DVec3::Y, 0.3),
         (DVec3::Z, 0.15),
         (-DVec3::Y, 0.0),
@@ -172,8 +175,19 @@ fn ups(figure: &Figure<'_>, pairs: &[Pair], across: DVec3) -> Vec<(DVec3, f64)> 
         (DVec3::X, 0.0),
         (-DVec3::X, 0.0),
     ];
+    let mut axes: Vec<(DVec3, f64)> =
+        usual.iter().map(|&(axis, prior)| (figure.frame.apply(axis), prior)).collect();
+    if figure.frame != Rotor::IDENTITY {
+        // The carrier may also be there to set the figure upright.
+        for (axis, prior) in usual {
+            match axes.iter_mut().find(|(own, _)| own.dot(axis) > 0.999_999) {
+                Some(own) => own.1 = own.1.max(prior),
+                None => axes.push((axis, prior - 0.1)),
+            }
+        }
+    }
     let mut ups: Vec<(DVec3, f64)> =
-        axes.into_iter().filter(|(axis, _)| axis.dot(across).abs() < 0.35).collect();
+        axes.iter().copied().filter(|(axis, _)| axis.dot(across).abs() < 0.35).collect();
     for pair in pairs.iter().take(MOST_PAIRS) {
         let ends = (figure.far[pair.first[0]] + figure.far[pair.first[1]]) * 0.5;
         let along = figure.position[pair.on] - ends;
@@ -186,7 +200,7 @@ fn ups(figure: &Figure<'_>, pairs: &[Pair], across: DVec3) -> Vec<(DVec3, f64)> 
         }
     }
     if ups.is_empty() {
-        ups.push((DVec3::Y, 0.0));
+        ups.push((figure.frame.apply(DVec3::Y), 0.0));
     }
     ups
 }

@@ -3,11 +3,15 @@
 use glam::DVec3;
 
 use super::super::{JointKind, Skeleton, Transform};
-use super::words::{self, Name};
+use super::name::Name;
+use super::words;
 use crate::rotor::Rotor;
 
 /// Joints beyond which nothing is looked for: no figure has as many.
 pub(super) const MOST_JOINTS: usize = 4096;
+
+/// The cosine of the angle (0.03°) within which axes count as the scene's own: files round.
+const SQUARE: f64 = 0.999_999_86;
 
 /// The listed joints as a tree of their own; what the names call helpers and ends does not take part, but its places
 /// count as tips.
@@ -33,12 +37,15 @@ pub(super) struct Figure<'a> {
     pub size: Vec<usize>,
     /// Whether names help: at least five joints name a part.
     pub is_named: bool,
+    /// The turn of what the figure hangs under, where that is askew to the scene's axes: the axes that up is looked for among turn with it.
+    pub frame: Rotor,
     /// Largest distance of two ends along an axis; the measure of what is small.
     pub extent: f64,
 }
 
 impl<'a> Figure<'a> {
-    pub(super) fn new(skeleton: &'a Skeleton, rest: &[Transform]) -> Self {
+    /// `below`: only joints from this one down take part.
+    pub(super) fn new(skeleton: &'a Skeleton, rest: &[Transform], below: Option<usize>) -> Self {
         let n = skeleton.len();
         let worlds = skeleton.world(rest);
         let position: Vec<DVec3> = worlds.iter().map(super::super::WorldJoint::position).collect();
@@ -48,9 +55,15 @@ impl<'a> Figure<'a> {
         for (&joint, name) in listed.iter().zip(words::read(&raw)) {
             names[joint] = name;
         }
+        let mut is_meant = vec![below.is_none(); n];
+        for joint in 0..n {
+            let up = skeleton.joints()[joint].parent;
+            is_meant[joint] |= below == Some(joint) || up.is_some_and(|up| is_meant[up]);
+        }
         let is_active: Vec<bool> = (0..n)
             .map(|joint| {
-                skeleton.joints()[joint].kind == JointKind::Joint
+                is_meant[joint]
+                    && skeleton.joints()[joint].kind == JointKind::Joint
                     && !names[joint].is_helper()
                     && !(names[joint].is_end() && skeleton.children(joint).is_empty())
                     && position[joint].is_finite()
@@ -106,6 +119,15 @@ impl<'a> Figure<'a> {
         };
         let extent = spread(DVec3::X).max(spread(DVec3::Y)).max(spread(DVec3::Z));
         let rotation = worlds.iter().map(|world| world.rotation).collect();
+        let root = (0..n).filter(|&joint| is_active[joint] && parent[joint].is_none()).max_by_key(|&joint| {
+            // The first of the largest.
+            (size[joint], std::cmp::Reverse(joint))
+        });
+        let frame = root
+            .and_then(|root| skeleton.joints()[root].parent)
+            .map_or(Rotor::IDENTITY, |carrier| worlds[carrier].rotation);
+        let is_askew = DVec3::AXES.iter().any(|&axis| frame.apply(axis).abs().max_element() < SQUARE);
+        let frame = if is_askew { frame } else { Rotor::IDENTITY };
         Self {
             skeleton,
             names,
@@ -119,6 +141,7 @@ impl<'a> Figure<'a> {
             far,
             size,
             is_named: named >= 5,
+            frame,
             extent: if extent.is_finite() { extent } else { 0.0 },
         }
     }

@@ -101,6 +101,8 @@ pub struct Roles {
     pub body: Body,
     /// The rest pose they were found in.
     pub shape: RestShape,
+    /// Root joints of further figures in the same file, which got no roles: see [`Roles::find_below`].
+    pub other_figures: Vec<usize>,
     pub(super) by_role: BTreeMap<Role, usize>,
 }
 
@@ -124,7 +126,15 @@ impl Roles {
     /// # Panics
     /// When `rest` has not one transform for each joint.
     pub fn find_at(skeleton: &Skeleton, rest: &[Transform]) -> Self {
-        super::find::find(skeleton, rest)
+        Self::find_below(skeleton, rest, None)
+    }
+
+    /// As [`Roles::find_at`], but with `root` only what hangs on that joint is looked at: one figure of several in a file.
+    ///
+    /// # Panics
+    /// When `rest` has not one transform for each joint.
+    pub fn find_below(skeleton: &Skeleton, rest: &[Transform], root: Option<usize>) -> Self {
+        super::find::find(skeleton, rest, root)
     }
 
     /// The joint that plays a role.

@@ -4,7 +4,7 @@
 use glam::DVec3;
 
 use super::figure::Figure;
-use super::words::Part;
+use super::name::Part;
 
 /// Joints of a chain that are looked at; further ones belong to fingers.
 const MOST_IN_CHAIN: usize = 14;

@@ -7,14 +7,22 @@
 //! Roles: `VRMC_vrm` 1.0, humanoid; names and proportions also of ISO/IEC 19774-1:2019 (H-Anim).
 
 mod body;
+mod checks;
+mod dictionary;
+mod facing;
 mod figure;
 mod find;
 mod fingers;
 mod found;
+mod limb_roles;
+mod limb_shape;
 mod limbs;
+mod name;
+mod other_chains;
 mod pairs;
 mod role;
 mod shape;
+mod trunk_roles;
 mod words;
 
 pub use found::{Body, Chain, ChainKind, Doubt, JointRole, LEAST_CONFIDENCE, Roles, TwistHelper};
