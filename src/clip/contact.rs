@@ -6,7 +6,7 @@ use glam::DVec3;
 
 use crate::skeleton::TwoJointLimb;
 
-use super::{Clip, Worlds};
+use super::{Branch, Clip, Worlds};
 
 /// The leg that the thresholds below are meant for, in metres: hip to ankle of an adult.
 const ADULT_LEG: f64 = 0.9;
@@ -77,6 +77,19 @@ pub enum FootPart {
     Heel,
     /// The front point.
     Ball,
+}
+
+impl FootPart {
+    /// Heel, then ball.
+    pub const BOTH: [Self; 2] = [Self::Heel, Self::Ball];
+
+    /// `heel` or `ball`.
+    pub const fn name(self) -> &'static str {
+        match self {
+            Self::Heel => "heel",
+            Self::Ball => "ball",
+        }
+    }
 }
 
 impl Foot {
@@ -159,9 +172,11 @@ impl Trails {
     pub fn of(clip: &Clip, points: &[JointPoint]) -> Self {
         let mut rows = vec![Vec::with_capacity(clip.grid.count()); points.len()];
         let times: Vec<f64> = clip.grid.times.iter().collect();
+        let branch = Branch::of(clip, points.iter().map(|point| point.joint));
+        let points: Vec<JointPoint> = points.iter().map(|&point| branch.point(point)).collect();
         for chunk in times.chunks(CHUNK) {
-            let worlds = clip.worlds_at(chunk);
-            for (row, point) in rows.iter_mut().zip(points) {
+            let worlds = branch.clip.worlds_at(chunk);
+            for (row, point) in rows.iter_mut().zip(&points) {
                 row.extend((0..chunk.len()).map(|time| point.place(&worlds, time)));
             }
         }

@@ -4,6 +4,7 @@
 //! what they did not touch.
 
 mod angle_rows;
+mod branch;
 mod bulk;
 mod contact;
 mod continuity;
@@ -27,6 +28,7 @@ mod vector_track;
 mod worlds;
 
 pub use angle_rows::{AngleRows, AngleScratch, Growing};
+pub use branch::Branch;
 pub use bulk::turns_between;
 pub use contact::{
     ContactOptions, Contacts, Foot, FootPart, JointPoint, PlantedSpan, Slide, Trails, contacts, leg_lengths,

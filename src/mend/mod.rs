@@ -19,5 +19,5 @@ mod take_out;
 pub use apply::{apply, apply_all, change_rad};
 pub use error::MendError;
 pub use loop_close::{LoopOptions, LoopReport, close_loop};
-pub use plant::{Miss, PlantOptions, PlantReport, plant_feet, plant_feet_at};
+pub use plant::{Miss, PlantOptions, PlantReport, faded, move_end, plant_feet, plant_feet_at};
 pub use survey::{Survey, SurveyOptions, survey};

@@ -6,11 +6,11 @@ use std::sync::Arc;
 use glam::DVec3;
 
 use crate::clip::{
-    Clip, Foot, FootPart, JointTracks, PathKind, Paths, PlantedSpan, RotationTrack, Slide, Times,
-    median_place, slides,
+    Branch, Clip, Foot, FootPart, JointPoint, JointTracks, PathKind, Paths, PlantedSpan, RotationTrack,
+    Slide, Times, median_place, slides,
 };
 use crate::rotor::{Bivector, Rotor, chordal_mean};
-use crate::skeleton::{EASE_FROM, EndTurn, Reach, eased};
+use crate::skeleton::{EASE_FROM, EndTurn, Reach, TwoJointLimb, eased};
 use crate::snag::Plant;
 
 use super::draft::Draft;
@@ -127,6 +127,32 @@ pub fn plant_feet_at(
     (result, report)
 }
 
+/// Moves the end of a limb by `shifts` in the scene, one for each frame, by bending it in its own plane; the end keeps its turn in the
+/// scene, and near full stretch the limb gives way softly. Frames whose shift is nothing keep their numbers.
+///
+/// The report has no slides; its misses are those of foot 0.
+pub fn move_end(
+    clip: &Clip,
+    limb: &TwoJointLimb,
+    shifts: &[DVec3],
+    options: &PlantOptions,
+) -> (Clip, PlantReport) {
+    let count = clip.grid.count();
+    let mut report = PlantReport::default();
+    let mut all = shifts.to_vec();
+    all.resize(count, DVec3::ZERO);
+    let point = JointPoint { joint: limb.end, offset: limb.end_point };
+    let end = Foot { limb: *limb, heel: point, ball: point };
+    let asked = Corrections {
+        shifts: all,
+        turns: vec![Bivector::ZERO; count],
+        ball: vec![DVec3::ZERO; count],
+        may_rise: vec![0.0; count],
+    };
+    let result = bent(clip, 0, &end, &asked, options, &mut report);
+    (result, report)
+}
+
 /// The clip with these plants held, several of one foot at once.
 pub(super) fn hold(clip: &Clip, plants: &[Plant]) -> Clip {
     let count = clip.grid.count();
@@ -191,6 +217,8 @@ struct EndTrail {
 impl EndTrail {
     fn of(clip: &Clip, foot: &Foot) -> Self {
         let count = clip.grid.count();
+        let branch = Branch::of(clip, foot.joints());
+        let (clip, foot) = (&branch.clip, &branch.foot(foot).unwrap_or(*foot));
         let mut trail = Self {
             places: Vec::with_capacity(count),
             turns: Vec::with_capacity(count),
@@ -363,9 +391,9 @@ fn runs(count: usize, is_in: impl Fn(usize) -> bool) -> Vec<(usize, usize)> {
     found
 }
 
-/// Values at all frames from those known at some: they fade to nothing over `reach` frames, and into one another where the gap
-/// between is no longer than that.
-fn faded<T>(known: &[Option<T>], reach: usize) -> Vec<T>
+/// Values at all frames from those known at some: they fade to nothing over `reach` frames with 2t³ − 3t² + 1, and into one another
+/// where the gap between is no longer than that.
+pub fn faded<T>(known: &[Option<T>], reach: usize) -> Vec<T>
 where
     T: Copy + Default + std::ops::Add<Output = T> + std::ops::Mul<f64, Output = T>,
 {
@@ -404,9 +432,12 @@ fn bent(
     options: &PlantOptions,
     report: &mut PlantReport,
 ) -> Clip {
-    let limb = &foot.limb;
+    let whole = clip;
+    let branch = Branch::of(whole, foot.joints());
+    let Some(own_foot) = branch.foot(foot) else { return whole.clone() };
+    let (clip, limb) = (&branch.clip, &own_foot.limb);
     let times: Vec<f64> = clip.grid.times.iter().collect();
-    let leg = crate::clip::leg_lengths(clip, std::slice::from_ref(foot))[0];
+    let leg = crate::clip::leg_lengths(clip, std::slice::from_ref(&own_foot))[0];
     let hinge = {
         let every = times.len().div_ceil(HINGE_POSES).max(1);
         let poses = times.iter().step_by(every).map(|&secs| clip.local_at(secs));
@@ -421,6 +452,7 @@ fn bent(
         if limb.end == limb.lower { &[limb.upper, limb.lower] } else { &[limb.upper, limb.lower, limb.end] };
     let mut poses: Vec<Vec<(usize, Rotor)>> = vec![Vec::with_capacity(frames.len()); joints.len()];
     let mut misses: Vec<(usize, f64)> = Vec::new();
+    let mut changes = [(0.0, 0); 3];
     for chunk in frames.chunks(CHUNK) {
         let secs: Vec<f64> = chunk.iter().map(|&frame| times[frame]).collect();
         for (local, &frame) in clip.locals_at_by(&secs, None).iter().zip(chunk) {
@@ -454,9 +486,9 @@ fn bent(
                 misses.push((frame, bend.miss));
             }
             let rotors = [Some(bend.upper), Some(bend.lower), bend.end];
-            for ((row, rotor), &joint) in poses.iter_mut().zip(rotors.into_iter().flatten()).zip(joints) {
+            let turned = poses.iter_mut().zip(rotors.into_iter().flatten()).zip(joints).zip(&mut changes);
+            for (((row, rotor), &joint), worst) in turned {
                 let change = local[joint].rotation.turn_to(rotor);
-                let worst = report.changes.entry(joint).or_insert((0.0, frame));
                 if change > worst.0 {
                     *worst = (change, frame);
                 }
@@ -469,9 +501,14 @@ fn bent(
             report.misses.push(Miss { foot: index, frame, by });
         }
     }
-    let mut result = clip.clone();
-    for (&joint, changed) in joints.iter().zip(&poses) {
+    let mut result = whole.clone();
+    let numbers = [foot.limb.upper, foot.limb.lower, foot.limb.end];
+    for ((joint, changed), worst) in numbers.into_iter().zip(&poses).zip(changes) {
         if !changed.is_empty() {
+            let known = report.changes.entry(joint).or_insert(worst);
+            if worst.0 > known.0 {
+                *known = worst;
+            }
             result = with_frames(&result, joint, changed);
         }
     }
