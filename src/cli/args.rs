@@ -168,6 +168,7 @@ pub(super) struct BlendArgs {
 /// one more clip, or under its hierarchy. Exported curves that drive a machine need that machine's own limits and guarding,
 /// local safety codes and a licensed or qualified person.
 #[derive(Debug, Args)]
+#[expect(clippy::struct_excessive_bools, reason = "independent switches of the command line")]
 pub(super) struct RetargetArgs {
     /// Clip to carry over
     #[arg(value_name = "CLIP")]
@@ -184,9 +185,43 @@ pub(super) struct RetargetArgs {
     /// Write the joint map that was used
     #[arg(long, value_name = "FILE")]
     pub(super) save_map: Option<PathBuf>,
+    /// Keep the joint map that was used for these two skeletons: the next clip gets it without being asked
+    #[arg(long)]
+    pub(super) keep_map: bool,
+    /// Use no joint map that was kept
+    #[arg(long)]
+    pub(super) no_kept_map: bool,
     /// Hold feet where they stand
     #[arg(long)]
     pub(super) plant_feet: bool,
+    /// When feet stand, and which hands are held where: CSV with the columns `side,part,first_s,last_s,at`
+    ///
+    /// The part is heel, ball or hand. A hand is held still, at a point (`at` is three numbers), or at the other hand (`at` is other).
+    /// Rows of feet take the place of what is found in the clip; with them feet are held without --plant-feet.
+    #[arg(long, value_name = "FILE")]
+    pub(super) contacts: Option<PathBuf>,
+    /// Write the contacts that were found or read
+    #[arg(long, value_name = "FILE")]
+    pub(super) save_contacts: Option<PathBuf>,
+    /// Bring joints within limits after all else: those in a file for the target's joints, those a clean clip of the target keeps to, or the
+    /// preset adult
+    #[arg(long, value_name = "FILE|adult")]
+    pub(super) limits: Option<LimitsName>,
+    /// Take the clip's pose at this second for the source's rest pose
+    #[arg(long, value_name = "S")]
+    pub(super) rest_at: Option<f64>,
+    /// Take the target clip's pose at this second for the target's rest pose
+    #[arg(long, value_name = "S")]
+    pub(super) onto_rest_at: Option<f64>,
+    /// Turn the arms of a rest pose level and its legs down before rest poses are compared
+    #[arg(long, value_name = "source|target|both")]
+    pub(super) straighten: Option<Straighten>,
+    /// The joint that the source's figure hangs on, where its file holds several
+    #[arg(long, value_name = "JOINT")]
+    pub(super) root: Option<String>,
+    /// The joint that the target's figure hangs on, where its file holds several
+    #[arg(long, value_name = "JOINT")]
+    pub(super) onto_root: Option<String>,
     /// Write what it came to, .html or .json
     #[arg(long, value_name = "FILE")]
     pub(super) proof: Option<PathBuf>,
@@ -195,6 +230,14 @@ pub(super) struct RetargetArgs {
     pub(super) force: bool,
     #[command(flatten)]
     pub(super) csv: CsvArgs,
+}
+
+/// Whose rest pose is straightened.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, clap::ValueEnum)]
+pub(super) enum Straighten {
+    Source,
+    Target,
+    Both,
 }
 
 /// Write a clip in another format, at another rate, or a part of it

@@ -8,7 +8,7 @@ use crate::exchange::{self, WriteError, disk, ron};
 use crate::mend::MendError;
 use crate::proof::ProofError;
 use crate::raster::ImageError;
-use crate::retarget::{MapError, RetargetError};
+use crate::retarget::{ContactError, MapError, RetargetError};
 use crate::snag::Cancelled;
 
 /// Anything that ends a command.
@@ -79,6 +79,17 @@ pub enum CliError {
         /// What and where.
         source: MapError,
     },
+    /// A file of contacts that can't be read.
+    #[error("{}", with_advice(&format!("{}: {source}", .path.display()), "see what --save-contacts writes"))]
+    Contacts {
+        /// The file.
+        path: PathBuf,
+        /// What and where.
+        source: ContactError,
+    },
+    /// A kept joint map that can't be used.
+    #[error("{}", with_advice(&.0.to_string(), "throw that file away, or go on with --no-kept-map"))]
+    KeptMap(#[from] exchange::joint_maps::KeptMapError),
     /// A clip that can't be carried over.
     #[error("{}", with_advice(&format!("{}: {source}", .path.display()), "give a map with --map"))]
     Retarget {

@@ -8,6 +8,7 @@ use std::sync::Arc;
 use crate::exchange::limits::{LimitsFile, read};
 use crate::exchange::{self, ClipAddress, OpenOptions};
 use crate::limit::{LearnOptions, Limits, adult, learned};
+use crate::skeleton::Skeleton;
 use crate::snag::SnagKind;
 
 use super::error::CliError;
@@ -110,6 +111,21 @@ impl LimitsSource {
             };
         }
         Ok(limits)
+    }
+
+    /// The limits of a file for another skeleton than that of an input; `None` for the preset.
+    pub(super) fn for_skeleton(
+        &self,
+        skeleton: &Skeleton,
+        output: &mut Output,
+    ) -> Result<Option<Arc<Limits>>, CliError> {
+        let Self::File(file) = self else { return Ok(None) };
+        let (limits, missing) = file.fit(skeleton)?;
+        if !missing.is_empty() {
+            let names = missing.iter().map(|name| format!("`{name}`")).collect::<Vec<_>>().join(", ");
+            output.note(&file.path, &format!("the target has no joint {names}; left out"));
+        }
+        Ok(Some(Arc::new(limits)))
     }
 
     /// Kinds that were named and need limits, where there are none at all.

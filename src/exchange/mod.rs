@@ -9,6 +9,7 @@ pub mod decimal;
 pub mod disk;
 mod export;
 pub mod gltf;
+pub mod joint_maps;
 pub mod limits;
 mod losses;
 mod note;

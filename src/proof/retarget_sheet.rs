@@ -54,6 +54,22 @@ fn numbers(report: &Report, map: &JointMap, [source, target]: [&Figure; 2], name
             "deg": own.by_rad.to_degrees(),
             "frame": own.frame,
         })),
+        "dip_before": report.deepest_dip.map(|dip| dip[0]),
+        "dip_after": report.deepest_dip.map(|dip| dip[1]),
+        "limits": report.limits_title,
+        "largest_change_by_limits": report.largest_clamp.map(|own| json!({
+            "joint": label(own.joint),
+            "deg": own.by_rad.to_degrees(),
+            "frame": own.frame,
+        })),
+        "limit_use": report.limits.iter().map(|own| json!({
+            "joint": label(own.joint),
+            "most_use": own.most_use,
+            "frames_beyond_before": own.beyond_before,
+            "most_beyond_before_deg": own.most_beyond_before_rad.to_degrees(),
+            "frames_beyond": own.beyond,
+            "most_beyond_deg": own.most_beyond_rad.to_degrees(),
+        })).collect::<Vec<_>>(),
         "not_met": report.missed.iter().map(|own| json!({
             "what": own.what,
             "joint": label(own.joint),

@@ -17,6 +17,8 @@ pub struct Figure {
     pub rest: LocalPose,
     /// What its joints are, in that pose.
     pub roles: Roles,
+    /// The joint that the figure hangs on, where it is one of several of its file.
+    pub root: Option<usize>,
 }
 
 impl Figure {
@@ -30,8 +32,16 @@ impl Figure {
     /// # Panics
     /// When `rest` has not one transform for each joint.
     pub fn with_rest(skeleton: &Arc<Skeleton>, rest: LocalPose) -> Self {
-        let roles = Roles::find_at(skeleton, &rest);
-        Self { skeleton: skeleton.clone(), rest, roles }
+        Self::below(skeleton, rest, None)
+    }
+
+    /// As [`Figure::with_rest`]; with `root` of what hangs on that joint alone: one figure of several in a file.
+    ///
+    /// # Panics
+    /// When `rest` has not one transform for each joint.
+    pub fn below(skeleton: &Arc<Skeleton>, rest: LocalPose, root: Option<usize>) -> Self {
+        let roles = Roles::find_below(skeleton, &rest, root);
+        Self { skeleton: skeleton.clone(), rest, roles, root }
     }
 
     /// The same figure with arms level and legs down: a T-pose. Only the joints of arms and legs turn.
@@ -67,7 +77,7 @@ impl Figure {
                 rest[joint].rotation = (above.reverse() * shape.rotations[joint]).normalize();
             }
         }
-        Self::with_rest(&self.skeleton, rest)
+        Self::below(&self.skeleton, rest, self.root)
     }
 
     /// The turn from the axes (x left, y up, z forward) to the figure's own.

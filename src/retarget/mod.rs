@@ -7,21 +7,30 @@
 
 mod alignment;
 mod chain;
+mod contact_file;
 mod figure;
 mod fingerprint;
+mod hands;
 mod joint_map;
+mod keep;
 mod map_file;
 mod measure;
+mod options;
 mod plan;
 mod report;
+mod rest;
 mod smooth;
 mod stand;
 mod transfer;
 
 pub use chain::spread;
+pub use contact_file::{ContactError, Contacts, read_contacts, write_contacts};
 pub use figure::Figure;
 pub use fingerprint::fingerprint;
 pub use joint_map::{JointMap, Link, LinkKind};
 pub use map_file::{MapError, MapRow, read_map, write_map};
-pub use report::{DirectionError, LargestCorrection, Missed, Report};
-pub use transfer::{Options, RetargetError, Retargeted, retarget};
+pub use options::{FootContact, HandHold, HoldAt, KeptLimits, Options};
+pub use report::{DirectionError, LargestCorrection, LimitUse, Missed, Report};
+pub use rest::RestPick;
+pub use stand::find_contacts;
+pub use transfer::{Driver, RetargetError, Retargeted, Transfer, retarget};

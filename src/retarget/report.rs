@@ -1,5 +1,9 @@
 //! What carrying a clip over came to, in numbers.
 
+use std::collections::BTreeMap;
+
+use crate::skeleton::Skeleton;
+
 /// How far a limb of the target points from where the source's does.
 #[derive(Clone, Debug, PartialEq)]
 pub struct DirectionError {
@@ -13,7 +17,7 @@ pub struct DirectionError {
     pub worst_frame: usize,
 }
 
-/// The largest change that holding feet made.
+/// The largest change that holding feet or hands, or limits, made.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct LargestCorrection {
     /// The target's joint.
@@ -22,6 +26,23 @@ pub struct LargestCorrection {
     pub by_rad: f64,
     /// The frame.
     pub frame: usize,
+}
+
+/// How a joint of the result keeps to its limit.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct LimitUse {
+    /// The target's joint.
+    pub joint: usize,
+    /// The largest use of the limit, 1 at it.
+    pub most_use: f64,
+    /// Frames beyond the limit before joints were brought within it.
+    pub beyond_before: usize,
+    /// How far beyond at most, in radians.
+    pub most_beyond_before_rad: f64,
+    /// Frames beyond the limit in the result.
+    pub beyond: usize,
+    /// How far beyond at most, in radians.
+    pub most_beyond_rad: f64,
 }
 
 /// Something that could not be met.
@@ -35,6 +56,19 @@ pub struct Missed {
     pub frame: usize,
     /// How much is missing, in the target's lengths.
     pub by: f64,
+}
+
+impl Missed {
+    /// One line for people: what, where, when and by how much.
+    pub fn sentence(&self, target: &Skeleton) -> String {
+        format!(
+            "not met: {} ({}, frame {}, by {:.4})",
+            self.what,
+            target.label(self.joint),
+            self.frame,
+            self.by
+        )
+    }
 }
 
 /// What carrying a clip over came to.
@@ -61,8 +95,17 @@ pub struct Report {
     pub drift: Option<[f64; 2]>,
     /// How many spans with a planted foot were found.
     pub n_plants: usize,
-    /// The largest change that holding feet made.
+    /// The largest change that holding feet and hands made.
     pub largest_correction: Option<LargestCorrection>,
+    /// How joints keep to the limits that were asked for; without any, a human figure to the preset for adults, which is measured only.
+    pub limits: Vec<LimitUse>,
+    /// What these limits are called; empty without any.
+    pub limits_title: String,
+    /// The largest change that limits made.
+    pub largest_clamp: Option<LargestCorrection>,
+    /// The deepest that a point of a foot lies below the ground between plants, before feet were lifted there and after, in the target's
+    /// lengths.
+    pub deepest_dip: Option<[f64; 2]>,
     /// What could not be met.
     pub missed: Vec<Missed>,
     /// What is worth telling, a sentence each.
@@ -70,6 +113,13 @@ pub struct Report {
 }
 
 impl Report {
+    /// Takes the largest of some changes of joints, in radians and with their frames, where it is larger than what is known.
+    pub(super) fn note_changes(&mut self, changes: &BTreeMap<usize, (f64, usize)>) {
+        let own = changes.iter().map(|(&joint, &(by_rad, frame))| LargestCorrection { joint, by_rad, frame });
+        let most = own.chain(self.largest_correction).max_by(|a, b| a.by_rad.total_cmp(&b.by_rad));
+        self.largest_correction = most;
+    }
+
     /// The largest direction error of all, in radians.
     pub fn worst_direction_rad(&self) -> f64 {
         self.directions.iter().map(|error| error.worst_rad).fold(0.0, f64::max)

@@ -5,54 +5,91 @@ use std::sync::Arc;
 use glam::DVec3;
 
 use crate::clip::{
-    Clip, ContactOptions, Foot, FootPart, JointPoint, JointTracks, PlantedSpan, Trails, VectorTrack,
-    contacts, leg_lengths, median_place,
+    Clip, ContactOptions, Foot, FootPart, JointPoint, JointTracks, PlantedSpan, Slide, Trails, VectorTrack,
+    contacts, leg_lengths, median_place, slide_of,
 };
-use crate::mend::{PlantOptions, plant_feet_at};
+use crate::mend::{PlantOptions, move_end, plant_feet_at};
 use crate::skeleton::roles::{Role, Side};
 
 use super::figure::Figure;
+use super::options::{FootContact, frames_of};
 use super::plan::{Plan, Root};
-use super::report::{LargestCorrection, Missed, Report};
+use super::report::{Missed, Report};
 use super::smooth::SmoothCurve;
 
 /// A planted point that lies higher than this above its usual height stands on something; in leg lengths.
 const STEP: f64 = 0.06;
 
-/// Finds where feet are planted in the source and holds them in the result: at one place each, as high above the ground as they stand in the
-/// target's rest pose.
+/// What is off by less than this share of the limb is met.
+pub(super) const LEAST_MISS: f64 = 1e-3;
+
+/// Feet that were held, for measuring what became of them.
+pub(super) struct Held {
+    feet: Vec<Foot>,
+    spans: Vec<PlantedSpan>,
+    legs: Vec<f64>,
+    up: DVec3,
+}
+
+/// Where the feet of a clip stand by themselves: the contacts that [`retarget`](super::retarget()) holds when nobody says which.
+pub fn find_contacts(clip: &Clip, figure: &Figure) -> Vec<FootContact> {
+    let feet: Vec<(Side, Foot)> =
+        Side::BOTH.iter().filter_map(|&side| Some((side, foot(figure, side)?))).collect();
+    let own: Vec<Foot> = feet.iter().map(|(_, foot)| *foot).collect();
+    let options = ContactOptions { up: figure.roles.shape.up, ..ContactOptions::default() };
+    contacts(clip, &own, &options)
+        .spans
+        .iter()
+        .map(|span| FootContact {
+            side: feet[span.foot].0,
+            part: span.part,
+            span_secs: [clip.grid.time(span.first_frame), clip.grid.time(span.last_frame)],
+        })
+        .collect()
+}
+
+/// Holds feet in the result where they are planted in the source, or where `said` says: at one place each, as high above the ground as
+/// they stand in the target's rest pose.
 pub(super) fn hold_feet(
     clip: &Clip,
-    source: &Figure,
-    target: &Figure,
+    [source, target]: [&Figure; 2],
     plan: &Plan,
+    said: Option<&[FootContact]>,
     result: Clip,
     report: &mut Report,
-) -> Clip {
-    let both: Vec<[Foot; 2]> =
-        Side::BOTH.iter().filter_map(|&side| Some([foot(source, side)?, foot(target, side)?])).collect();
+) -> (Clip, Option<Held>) {
+    let both: Vec<(Side, [Foot; 2])> = Side::BOTH
+        .iter()
+        .filter_map(|&side| Some((side, [foot(source, side)?, foot(target, side)?])))
+        .collect();
     if both.is_empty() {
         report.notes.push("no feet were found in both skeletons, so none were held".to_owned());
-        return result;
+        return (result, None);
     }
-    let sources: Vec<Foot> = both.iter().map(|[own, _]| *own).collect();
-    let targets: Vec<Foot> = both.iter().map(|[_, own]| *own).collect();
+    let sources: Vec<Foot> = both.iter().map(|(_, [own, _])| *own).collect();
+    let targets: Vec<Foot> = both.iter().map(|(_, [_, own])| *own).collect();
     let shapes = [&source.roles.shape, &target.roles.shape];
-    let options = ContactOptions { up: shapes[0].up, ..ContactOptions::default() };
-    let found = contacts(clip, &sources, &options);
-    let mut spans = Vec::with_capacity(found.spans.len());
-    let mut heights = Vec::with_capacity(found.spans.len());
+    let source_spans = match said {
+        None => {
+            let options = ContactOptions { up: shapes[0].up, ..ContactOptions::default() };
+            contacts(clip, &sources, &options).spans
+        }
+        Some(said) => said_spans(clip, said, &both, report),
+    };
+    let mut spans = Vec::with_capacity(source_spans.len());
+    let mut heights = Vec::with_capacity(source_spans.len());
     let points: Vec<_> = sources.iter().flat_map(|foot| [foot.heel, foot.ball]).collect();
     let trails = Trails::of(clip, &points);
-    for span in &found.spans {
+    let source_legs = leg_lengths(clip, &sources);
+    let standing: Vec<f64> = trails.rows.iter().map(|row| standing_height(row, shapes[0].up)).collect();
+    for span in &source_spans {
         let foot = &targets[span.foot];
         // A foot that is one point stands on that.
         let part = if foot.parts().contains(&span.part) { span.part } else { FootPart::Heel };
-        let row = &trails.rows[2 * span.foot + usize::from(span.part == FootPart::Ball)];
-        let standing = standing_height(row, shapes[0].up);
-        let above = median_place(row, span.frames()).dot(shapes[0].up) - standing;
-        let above = if above > STEP * found.leg { above * plan.scale } else { 0.0 };
-        heights.push(rest_height(target, foot, part, plan).map(|height| height + above));
+        let row = 2 * span.foot + usize::from(span.part == FootPart::Ball);
+        let above = median_place(&trails.rows[row], span.frames()).dot(shapes[0].up) - standing[row];
+        let above = if above > STEP * source_legs[span.foot] { above * plan.scale } else { 0.0 };
+        heights.push(rest_height(target, foot.point(part), plan).map(|height| height + above));
         spans.push(PlantedSpan { part, ..*span });
     }
     report.n_plants = spans.len();
@@ -62,22 +99,217 @@ pub(super) fn hold_feet(
     };
     let options = PlantOptions { up: shapes[1].up, ..PlantOptions::default() };
     let (held, plants) = plant_feet_at(&result, &targets, &spans, &heights, &options);
-    let sum = |slides: &[crate::clip::Slide]| slides.iter().map(|slide| slide.path).sum::<f64>();
-    let most = |slides: &[crate::clip::Slide]| slides.iter().map(|slide| slide.farthest).fold(0.0, f64::max);
     report.slide = Some([sum(&plants.before), sum(&plants.after)]);
     report.drift = Some([most(&plants.before), most(&plants.after)]);
-    report.largest_correction = plants
-        .changes
-        .iter()
-        .map(|(&joint, &(by_rad, frame))| LargestCorrection { joint, by_rad, frame })
-        .max_by(|a, b| a.by_rad.total_cmp(&b.by_rad));
-    report.missed.extend(plants.misses.iter().map(|miss| Missed {
-        what: "the leg does not reach the place where the foot is planted".to_owned(),
-        joint: targets[miss.foot].limb.end,
-        frame: miss.frame,
-        by: miss.by,
-    }));
-    held
+    report.note_changes(&plants.changes);
+    let legs = leg_lengths(&held, &targets);
+    report.missed.extend(plants.misses.iter().filter(|miss| miss.by > LEAST_MISS * legs[miss.foot]).map(
+        |miss| Missed {
+            what: "the leg does not reach the place where the foot is planted".to_owned(),
+            joint: targets[miss.foot].limb.end,
+            frame: miss.frame,
+            by: miss.by,
+        },
+    ));
+    let held = above_ground(held, target, plan, &targets, &spans, &legs, report);
+    (held, Some(Held { feet: targets, spans, legs, up: shapes[1].up }))
+}
+
+/// What somebody said of feet, as spans of frames. What lies outside the clip, or speaks of a foot that is not there, is told.
+fn said_spans(
+    clip: &Clip,
+    said: &[FootContact],
+    both: &[(Side, [Foot; 2])],
+    report: &mut Report,
+) -> Vec<PlantedSpan> {
+    let mut spans = Vec::with_capacity(said.len());
+    for own in said {
+        let foot = both.iter().position(|(side, _)| *side == own.side);
+        let frames = frames_of(clip, own.span_secs);
+        if let (Some(foot), Some((first_frame, last_frame))) = (foot, frames) {
+            spans.push(PlantedSpan { foot, part: own.part, first_frame, last_frame });
+        } else {
+            let why = if foot.is_none() {
+                "there is no such foot in both figures"
+            } else {
+                "it lies outside the clip"
+            };
+            let [first, last] = own.span_secs;
+            report.notes.push(format!(
+                "the {} foot's contact from {first:.3} to {last:.3} s is left out: {why}",
+                own.side.name()
+            ));
+        }
+    }
+    spans.sort_unstable();
+    spans
+}
+
+fn sum(slides: &[Slide]) -> f64 {
+    slides.iter().map(|slide| slide.path).sum()
+}
+
+fn most(slides: &[Slide]) -> f64 {
+    slides.iter().map(|slide| slide.farthest).fold(0.0, f64::max)
+}
+
+impl Held {
+    /// Measures the feet anew after something else has changed the clip, and tells which were pulled off their places.
+    pub(super) fn measure_again(&self, before: &Clip, after: &Clip, report: &mut Report) {
+        let points: Vec<JointPoint> = self.feet.iter().flat_map(|foot| [foot.heel, foot.ball]).collect();
+        let rows = [before, after].map(|clip| Trails::of(clip, &points).rows);
+        let mut slides = Vec::with_capacity(self.spans.len());
+        for span in &self.spans {
+            let row = 2 * span.foot + usize::from(span.part == FootPart::Ball);
+            slides.push(slide_of(after, &rows[1][row], span.frames(), self.up));
+            let off = |frame: usize| rows[0][row][frame].distance(rows[1][row][frame]);
+            let worst = span.frames().max_by(|&a, &b| off(a).total_cmp(&off(b)));
+            if let Some(frame) = worst.filter(|&frame| off(frame) > LEAST_MISS * self.legs[span.foot]) {
+                report.missed.push(Missed {
+                    what: "limits pull the foot off the place where it is planted".to_owned(),
+                    joint: self.feet[span.foot].limb.end,
+                    frame,
+                    by: off(frame),
+                });
+            }
+        }
+        if let (Some(slide), Some(drift)) = (&mut report.slide, &mut report.drift) {
+            slide[1] = sum(&slides);
+            drift[1] = most(&slides);
+        }
+    }
+}
+
+/// Lifts feet that dip below the ground between their plants: a foot longer than the source's does. The lift sets in and fades smoothly and
+/// leaves planted frames as they are.
+fn above_ground(
+    clip: Clip,
+    target: &Figure,
+    plan: &Plan,
+    feet: &[Foot],
+    spans: &[PlantedSpan],
+    legs: &[f64],
+    report: &mut Report,
+) -> Clip {
+    /// Seconds over which a lift sets in.
+    const EASE_SECS: f64 = 0.1;
+    let up = target.roles.shape.up;
+    let count = clip.grid.count();
+    let step_secs = clip.grid.times.median_step().unwrap_or(1.0);
+    let reach = ((EASE_SECS / step_secs).round() as usize).clamp(2, count.max(2));
+    let mut result = clip;
+    let mut deepest: Option<[f64; 2]> = None;
+    for (index, foot) in feet.iter().enumerate() {
+        let soles = sole_points(target, foot, plan);
+        if soles.is_empty() {
+            continue;
+        }
+        let points: Vec<JointPoint> = soles.iter().map(|(point, _)| *point).collect();
+        let mut free = vec![true; count];
+        for span in spans.iter().filter(|span| span.foot == index) {
+            free[span.first_frame..=span.last_frame.min(count - 1)].fill(false);
+        }
+        let dips = |clip: &Clip| -> Vec<f64> {
+            let trails = Trails::of(clip, &points);
+            let depth = |frame: usize| {
+                let below = |(row, sole): (&Vec<DVec3>, &(JointPoint, f64))| sole.1 - row[frame].dot(up);
+                trails.rows.iter().zip(&soles).map(below).fold(0.0, f64::max)
+            };
+            (0..count).map(|frame| if free[frame] { depth(frame) } else { 0.0 }).collect()
+        };
+        let mut found = dips(&result);
+        let before = found.iter().copied().fold(0.0, f64::max);
+        let worst =
+            |dips: &[f64]| (0..count).max_by(|&a, &b| dips[a].total_cmp(&dips[b])).map(|at| (at, dips[at]));
+        let least = LEAST_MISS * legs[index];
+        // A lift bends the limb and so leaves a little; twice is enough.
+        for _ in 0..2 {
+            if worst(&found).is_none_or(|(_, dip)| dip <= least) {
+                break;
+            }
+            let lifts = lifts(&found, &free, reach);
+            let shifts: Vec<DVec3> = lifts.into_iter().map(|lift| up * lift).collect();
+            let options = PlantOptions { up, ..PlantOptions::default() };
+            let (lifted, report_of_lift) = move_end(&result, &foot.limb, &shifts, &options);
+            report.note_changes(&report_of_lift.changes);
+            result = lifted;
+            found = dips(&result);
+        }
+        if let Some((frame, dip)) = worst(&found) {
+            let [most, left] = deepest.unwrap_or_default();
+            deepest = Some([most.max(before), left.max(dip)]);
+            if dip > least {
+                report.missed.push(Missed {
+                    what: "the foot dips below the ground between plants".to_owned(),
+                    joint: foot.limb.end,
+                    frame,
+                    by: dip,
+                });
+            }
+        }
+    }
+    report.deepest_dip = deepest;
+    result
+}
+
+/// How far to lift at each frame: at least the dip there where the foot is free and no plant is near, without a corner in time.
+fn lifts(dips: &[f64], free: &[bool], reach: usize) -> Vec<f64> {
+    let last = dips.len() - 1;
+    let window = |frame: usize| frame.saturating_sub(reach)..=(frame + reach).min(last);
+    // The largest within reach, then twice a mean as wide: never less than the dip, and smooth.
+    let widest: Vec<f64> =
+        (0..=last).map(|frame| dips[window(frame)].iter().copied().fold(0.0, f64::max)).collect();
+    let half = (reach / 2).max(1);
+    let mean = |row: &[f64]| -> Vec<f64> {
+        (0..=last)
+            .map(|frame| {
+                let own = &row[frame.saturating_sub(half)..=(frame + half).min(last)];
+                own.iter().sum::<f64>() / own.len() as f64
+            })
+            .collect()
+    };
+    let smooth = mean(&mean(&widest));
+    // Nothing where the foot is planted, all from a few frames beside it on.
+    let away = frames_from(free);
+    let near = (reach / 4).max(1) as f64;
+    smooth
+        .into_iter()
+        .zip(away)
+        .map(|(lift, away)| {
+            let t = (away as f64 / near).min(1.0);
+            lift * (t * t * (3.0 - 2.0 * t))
+        })
+        .collect()
+}
+
+/// For each frame how many frames it is from the nearest one that is not free; large where there is none.
+fn frames_from(free: &[bool]) -> Vec<usize> {
+    let mut away = vec![usize::MAX / 2; free.len()];
+    let mut since = usize::MAX / 2;
+    for (frame, &is_free) in free.iter().enumerate() {
+        since = if is_free { since + 1 } else { 0 };
+        away[frame] = since;
+    }
+    since = usize::MAX / 2;
+    for (frame, &is_free) in free.iter().enumerate().rev() {
+        since = if is_free { since + 1 } else { 0 };
+        away[frame] = away[frame].min(since);
+    }
+    away
+}
+
+/// The points of a foot that a floor stops, and how high each is along up when the foot stands: the ball, and the tip of the toes.
+fn sole_points(target: &Figure, foot: &Foot, plan: &Plan) -> Vec<(JointPoint, f64)> {
+    let worlds = target.skeleton.world(&target.rest);
+    let mut points = vec![foot.ball];
+    if let Some(end) = target.roles.shape.limb_end(foot.ball.joint) {
+        let offset = worlds[foot.ball.joint].scene_from_joint.inverse().transform_point3(end);
+        let tip = JointPoint { joint: foot.ball.joint, offset };
+        if offset.is_finite() && tip != foot.ball {
+            points.push(tip);
+        }
+    }
+    points.into_iter().filter_map(|point| Some((point, rest_height(target, point, plan)?))).collect()
 }
 
 /// Moves the hips smoothly down so that planted feet come into reach.
@@ -167,14 +399,13 @@ fn standing_height(row: &[DVec3], up: DVec3) -> f64 {
 }
 
 /// How high a point of a foot stands in the scene when the foot is flat, as the rest pose has it. `None` where feet do not stand at rest.
-fn rest_height(target: &Figure, foot: &Foot, part: FootPart, plan: &Plan) -> Option<f64> {
+fn rest_height(target: &Figure, point: JointPoint, plan: &Plan) -> Option<f64> {
     let shape = &target.roles.shape;
     let ground = plan.root.as_ref().map(|root| root.ground)?;
     let stands = shape.ankle_height > 0.01 * shape.leg_length && shape.ankle_height < 0.4 * shape.leg_length;
     if !stands {
         return None;
     }
-    let point = foot.point(part);
     let world = target.skeleton.world(&target.rest)[point.joint];
     Some(ground + world.scene_from_joint.transform_point3(point.offset).dot(shape.up) - shape.ground)
 }

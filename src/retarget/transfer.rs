@@ -5,33 +5,23 @@ use std::sync::Arc;
 use glam::DVec3;
 
 use crate::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack, Worlds};
+use crate::limit::adult;
 use crate::rotor::{Rotor, SwingTwist};
+use crate::skeleton::LocalPose;
 
 use super::chain::spread;
 use super::figure::Figure;
+use super::hands;
 use super::joint_map::JointMap;
+use super::keep;
 use super::measure;
+use super::options::Options;
 use super::plan::{self, Drive, Plan, Root};
 use super::report::Report;
 use super::stand;
 
 /// Frames whose source poses are computed together.
 const CHUNK: usize = 512;
-
-/// How a clip is carried over.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub struct Options {
-    /// Feet that are planted in the source are held where they stand.
-    pub plant_feet: bool,
-    /// Directions, tips and slide are measured; that takes about as long as the transfer.
-    pub measure: bool,
-}
-
-impl Default for Options {
-    fn default() -> Self {
-        Self { plant_feet: false, measure: true }
-    }
-}
 
 /// A clip on its new skeleton.
 #[derive(Clone, Debug, PartialEq)]
@@ -75,15 +65,9 @@ pub fn retarget(
     source: &Figure,
     target: &Figure,
     map: &JointMap,
-    options: Options,
+    options: &Options,
 ) -> Result<Retargeted, RetargetError> {
-    if clip.joints.len() != source.skeleton.len() {
-        let (expected, found) = (source.skeleton.len(), clip.joints.len());
-        return Err(RetargetError::OtherSkeleton { expected, found });
-    }
-    if map.links.is_empty() {
-        return Err(RetargetError::NothingMapped);
-    }
+    check(clip, source, map)?;
     let plan = plan::plan(clip, source, target, map);
     let mut report = Report {
         scale: plan.scale,
@@ -103,17 +87,142 @@ pub fn retarget(
         grid,
         duration_secs: clip.duration_secs,
     };
+    let is_changed = options.plant_feet || !options.hands.is_empty() || options.limits.is_some();
+    if options.measure && is_changed {
+        measure::measure(clip, source, target, map, &plan, &result, &mut report);
+        report.unheld_direction_rad = report.worst_direction_rad();
+    }
+    let mut held = None;
     if options.plant_feet {
-        if options.measure {
-            measure::measure(clip, source, target, map, &plan, &result, &mut report);
-            report.unheld_direction_rad = report.worst_direction_rad();
+        let said = options.feet.as_deref();
+        (result, held) = stand::hold_feet(clip, [source, target], &plan, said, result, &mut report);
+    }
+    if !options.hands.is_empty() {
+        result = hands::hold_hands(clip, [source, target], &plan, &options.hands, result, &mut report);
+    }
+    if let Some(kept) = &options.limits {
+        if let Some(limits) = keep::limits_for(kept, target, &result, &mut report) {
+            let clamped = keep::keep_limits(&limits, &result, &mut report);
+            if let Some(held) = &held {
+                held.measure_again(&result, &clamped, &mut report);
+            }
+            keep::note_use(&limits, &result, &clamped, &mut report);
+            result = clamped;
         }
-        result = stand::hold_feet(clip, source, target, &plan, result, &mut report);
+    } else if options.measure
+        && target.root.is_none()
+        && let Ok(found) = adult::limits_for(&result)
+    {
+        keep::note_use(&found.limits, &result, &result, &mut report);
     }
     if options.measure {
         measure::measure(clip, source, target, map, &plan, &result, &mut report);
     }
     Ok(Retargeted { clip: result, report })
+}
+
+/// A transfer worked out once, for single poses at any time: what a window shows before the whole clip is carried over. Nothing is held.
+#[derive(Clone, Debug)]
+pub struct Transfer {
+    clip: Arc<Clip>,
+    target: Figure,
+    plan: Plan,
+}
+
+/// What drives a joint of the target.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Driver {
+    /// Nothing: it keeps its rest against its parent.
+    Rest,
+    /// One joint of the source.
+    Joint(usize),
+    /// A chain of the source with more or fewer joints, spread along its length.
+    Chain(Vec<usize>),
+    /// The twist of the limb it lies on, of which it has a share; the joint whose bone that is.
+    Twist(usize),
+}
+
+impl Transfer {
+    /// Works out how each joint is driven.
+    ///
+    /// # Errors
+    /// As [`retarget`].
+    pub fn new(
+        clip: &Arc<Clip>,
+        source: &Figure,
+        target: &Figure,
+        map: &JointMap,
+    ) -> Result<Self, RetargetError> {
+        check(clip, source, map)?;
+        let plan = plan::plan(clip, source, target, map);
+        Ok(Self { clip: Arc::clone(clip), target: target.clone(), plan })
+    }
+
+    /// What drives a joint of the target.
+    ///
+    /// # Panics
+    /// When there is no such joint.
+    pub fn driver(&self, joint: usize) -> Driver {
+        match &self.plan.drives[joint] {
+            Drive::Direct { source, .. } => Driver::Joint(*source),
+            Drive::Spread { chain, .. } => {
+                Driver::Chain(self.plan.chains[*chain].sources.iter().map(|(joint, _)| *joint).collect())
+            }
+            Drive::Rest => match self.plan.twists.iter().find(|own| own.helper == joint) {
+                Some(share) => Driver::Twist(share.of),
+                None => Driver::Rest,
+            },
+        }
+    }
+
+    /// Target lengths as multiples of source lengths.
+    pub fn scale(&self) -> f64 {
+        self.plan.scale
+    }
+
+    /// A direction of the source's scene in the target's.
+    pub fn turned(&self, direction: DVec3) -> DVec3 {
+        self.plan.turned.apply(direction)
+    }
+
+    /// The target's pose at a time in seconds: each joint relative to its parent.
+    pub fn pose_at(&self, secs: f64) -> LocalPose {
+        let worlds = self.clip.worlds_at(&[secs]);
+        let n = self.target.skeleton.len();
+        let mut scene = vec![Rotor::IDENTITY; n];
+        let mut turns = vec![Vec::new(); n];
+        pose(&self.target, &self.plan, &worlds, 0, &mut scene, &mut turns);
+        let mut local = self.target.rest.clone();
+        for (own, keys) in local.iter_mut().zip(&turns) {
+            if let Some(turn) = keys.first() {
+                own.rotation = *turn;
+            }
+        }
+        if let Some(root) = &self.plan.root {
+            let followed: DVec3 = root.follows.iter().map(|&joint| worlds.position(joint, 0)).sum();
+            let place = root.place(&self.plan, followed / root.follows.len() as f64, scene[root.target]);
+            local[root.target].translation = place;
+        }
+        for own in &self.plan.moves {
+            let rest = self.clip.skeleton.joints()[own.source].rest.translation;
+            let track = self.clip.joints[own.source].translation.as_ref();
+            let moved = track.and_then(|track| track.at(secs)).unwrap_or(rest) - rest;
+            let to = self.target.rest[own.target].translation;
+            local[own.target].translation = to + own.turn.apply(moved) * own.factor;
+        }
+        local
+    }
+}
+
+fn check(clip: &Clip, source: &Figure, map: &JointMap) -> Result<(), RetargetError> {
+    if clip.joints.len() != source.skeleton.len() {
+        let (expected, found) = (source.skeleton.len(), clip.joints.len());
+        return Err(RetargetError::OtherSkeleton { expected, found });
+    }
+    if map.links.is_empty() {
+        return Err(RetargetError::NothingMapped);
+    }
+    Ok(())
 }
 
 /// Every frame, and every key of the joints that drive something, as long as those do not make many times more.

@@ -122,9 +122,9 @@ fn carry(criterion: &mut Criterion<CpuTime>) {
         criterion.benchmark_group(format!("retarget {} joints x {FRAMES} frames", clip.skeleton.len()));
     group.sample_size(10);
     for (name, plant_feet) in [("turns", false), ("with feet held", true)] {
-        let options = Options { plant_feet, measure: false };
+        let options = Options { plant_feet, ..Options::bare() };
         group.bench_function(name, |bencher| {
-            bencher.iter(|| black_box(retarget(&clip, &source, &target, &map, options)));
+            bencher.iter(|| black_box(retarget(&clip, &source, &target, &map, &options)));
         });
     }
     group.finish();

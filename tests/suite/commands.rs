@@ -8,7 +8,7 @@ use std::process::{Command, Stdio};
 
 use serde_json::Value;
 use tempfile::TempDir;
-use turnwright::exchange::disk;
+use turnwright::exchange::{disk, joint_maps};
 
 use crate::support::{assert_close, list, number, numbers, shared};
 
@@ -85,7 +85,10 @@ impl Bench {
     }
 
     fn run_words(&self, arguments: &[&str]) -> Run {
-        let output = program().args(arguments).current_dir(self.folder.path()).output().unwrap();
+        let maps = self.folder.path().join("kept-maps");
+        let mut program = program();
+        program.args(arguments).current_dir(self.folder.path()).env(joint_maps::FOLDER_VARIABLE, maps);
+        let output = program.output().unwrap();
         Run {
             code: output.status.code().expect("the program ended by itself"),
             stdout: String::from_utf8(output.stdout).unwrap(),
@@ -746,4 +749,54 @@ fn a_clip_is_carried_into_the_file_of_another_figure() {
     bench.run(&format!("retarget {figure}#1 --onto {walk} -o back.bvh")).expect(0);
     let head = |bytes: &[u8]| String::from_utf8_lossy(bytes).split("MOTION").next().unwrap().to_owned();
     assert_eq!(head(&disk::read(Path::new(&walk)).unwrap()), head(&bench.read("back.bvh")));
+}
+
+#[test]
+fn a_retarget_keeps_maps_contacts_limits_and_rest_poses_as_it_is_told() {
+    let (Some(walk), Some(figure)) =
+        (shared("data/bvh/walk01.bvh"), shared("data/gltf/biped23_movement_clips.glb"))
+    else {
+        return;
+    };
+    let bench = Bench::new();
+    let base = format!("retarget {} --onto {}", walk.display(), figure.display());
+    let sheet = |name: &str| -> Value { serde_json::from_slice(&bench.read(name)).unwrap() };
+
+    // Contacts are written, changed and read; hands are held.
+    bench.run(&format!("{base} -o a.glb --plant-feet --save-contacts found.csv --proof a.json")).expect(0);
+    let found = bench.text("found.csv");
+    let n_found = found.lines().count() - 1;
+    assert!(n_found > 3 && sheet("a.json")["planted_spans"].as_u64() == Some(n_found as u64), "{found}");
+    let fewer: Vec<&str> = found.lines().take(n_found).chain(["left,hand,0.5,1.5,still"]).collect();
+    bench.write("fewer.csv", fewer.join("\n").as_bytes());
+    bench.run(&format!("{base} -o b.glb --contacts fewer.csv --proof b.json")).expect(0);
+    assert_eq!(sheet("b.json")["planted_spans"].as_u64(), Some(n_found as u64 - 1));
+    bench.write("wrong.csv", b"side,part,first_s,last_s\nleft,knee,0,1\n");
+    let wrong = bench.run(&format!("{base} -o c.glb --contacts wrong.csv")).expect(2);
+    assert!(
+        wrong.stderr.contains("wrong.csv: line 2: expected heel, ball or hand, found `knee`"),
+        "{}",
+        wrong.stderr
+    );
+
+    // Limits are kept, and their use is in the proof.
+    bench.run(&format!("{base} -o d.glb --plant-feet --limits adult --proof d.json")).expect(0);
+    let used = sheet("d.json")["limit_use"].as_array().unwrap().clone();
+    assert!(used.len() > 8 && used.iter().all(|own| own["frames_beyond"] == 0), "{used:?}");
+
+    // A kept map is used for the next clip of the same two skeletons, and told.
+    bench.write("rest.csv", b"source,target\n,head\n");
+    bench.run(&format!("{base} -o e.glb --map rest.csv --keep-map")).expect(0);
+    let again = bench.run(&format!("{base} -o f.glb")).expect(0);
+    assert!(again.stderr.contains("was kept for these two skeletons"), "{}", again.stderr);
+    assert_eq!(bench.read("e.glb"), bench.read("f.glb"));
+    bench.run(&format!("{base} -o g.glb --no-kept-map")).expect(0);
+    assert_ne!(bench.read("e.glb"), bench.read("g.glb"));
+
+    // Rest poses and figures.
+    let rest = bench.run(&format!("{base} -o h.glb --no-kept-map --straighten both --rest-at 0")).expect(0);
+    assert!(rest.stderr.contains("joints driven"), "{}", rest.stderr);
+    assert_ne!(bench.read("g.glb"), bench.read("h.glb"));
+    let wrong = bench.run(&format!("{base} -o i.glb --onto-root Nose")).expect(2);
+    assert!(wrong.stderr.contains("--onto-root Nose: expected a joint of"), "{}", wrong.stderr);
 }

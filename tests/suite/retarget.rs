@@ -5,10 +5,13 @@ use std::sync::Arc;
 
 use glam::{DAffine3, DVec3};
 use proptest::prelude::*;
-use turnwright::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
-use turnwright::exchange;
+use turnwright::clip::{Clip, FootPart, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
+use turnwright::exchange::{self, joint_maps};
+use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
 use turnwright::retarget::{
-    Figure, JointMap, MapError, Options, Retargeted, fingerprint, read_map, retarget, spread, write_map,
+    Contacts, Figure, FootContact, HandHold, HoldAt, JointMap, KeptLimits, MapError, MapRow, Options,
+    RestPick, Retargeted, Transfer, find_contacts, fingerprint, read_contacts, read_map, retarget, spread,
+    write_contacts, write_map,
 };
 use turnwright::rotor::{Bivector, Rotor};
 use turnwright::skeleton::roles::{Role, Side};
@@ -64,12 +67,12 @@ fn sway(skeleton: &Arc<Skeleton>, frames: usize, size: f64) -> Clip {
 fn carried(clip: &Clip, target: &Arc<Skeleton>, options: Options) -> Retargeted {
     let (source, target) = (Figure::new(&clip.skeleton), Figure::new(target));
     let map = JointMap::automatic(&source, &target);
-    retarget(clip, &source, &target, &map, options)
+    retarget(clip, &source, &target, &map, &options)
         .unwrap_or_else(|error| panic!("{error}: {:?}", map.doubts))
 }
 
 fn plain(clip: &Clip, target: &Arc<Skeleton>) -> Clip {
-    carried(clip, target, Options { plant_feet: false, measure: false }).clip
+    carried(clip, target, Options::bare()).clip
 }
 
 /// The largest turn in degrees and distance between two clips in the scene, joint by joint of one list.
@@ -249,19 +252,27 @@ fn hung(skeleton: &Skeleton, carrier: Transform) -> Arc<Skeleton> {
     Arc::new(Skeleton::new(joints).expect("parents stand first"))
 }
 
+/// Any turn at all.
+fn any_turn() -> impl Strategy<Value = Rotor> {
+    (-3.0..3.0_f64, -3.0..3.0_f64, -3.0..3.0_f64)
+        .prop_map(|(a, b, c)| Rotor::from_plane_angles(Bivector::new(a, b, c)))
+}
+
+fn any_place() -> impl Strategy<Value = DVec3> {
+    (-5.0..5.0_f64, -5.0..5.0_f64, -5.0..5.0_f64).prop_map(|(x, y, z)| DVec3::new(x, y, z))
+}
+
 proptest! {
-    #![proptest_config(ProptestConfig::with_cases(12))]
+    #![proptest_config(ProptestConfig::with_cases(24))]
 
     #[test]
     fn what_the_source_hangs_under_does_not_matter(
-        heading in -3.0..3.0_f64, size in 0.01..100.0_f64, x in -5.0..5.0_f64, y in -5.0..5.0_f64, z in -5.0..5.0_f64,
+        rotation in any_turn(), size in 0.01..100.0_f64, translation in any_place(),
     ) {
         let bare = Arc::new(person(&B).skeleton());
         let target = Arc::new(person(&D).map_places(|p| DVec3::new(1.2 * p.x, 0.8 * p.y, p.z)).skeleton());
         let expected = plain(&sway(&bare, 12, 1.0), &target);
-        let rotation = Rotor::from_plane_angles(Bivector::from_axis(DVec3::Y * heading));
-        let carrier = Transform { translation: DVec3::new(x, y, z), rotation, scale: DVec3::splat(size) };
-        let under = hung(&bare, carrier);
+        let under = hung(&bare, Transform { translation, rotation, scale: DVec3::splat(size) });
         let mut clip = sway(&under, 12, 1.0);
         // The very same motion below the carrier.
         let plain_clip = sway(&bare, 12, 1.0);
@@ -273,13 +284,12 @@ proptest! {
 
     #[test]
     fn what_the_target_hangs_under_turns_and_sizes_it_only(
-        heading in -3.0..3.0_f64, size in 0.01..100.0_f64, x in -5.0..5.0_f64, z in -5.0..5.0_f64,
+        rotation in any_turn(), size in 0.01..100.0_f64, translation in any_place(),
     ) {
         let clip = sway(&Arc::new(person(&B).skeleton()), 12, 1.0);
         let bare = person(&D).map_places(|p| DVec3::new(1.2 * p.x, 0.8 * p.y, p.z)).skeleton();
         let expected = plain(&clip, &Arc::new(bare.clone()));
-        let rotation = Rotor::from_plane_angles(Bivector::from_axis(DVec3::Y * heading));
-        let carrier = Transform { translation: DVec3::new(x, 0.0, z), rotation, scale: DVec3::splat(size) };
+        let carrier = Transform { translation, rotation, scale: DVec3::splat(size) };
         let found = plain(&clip, &hung(&bare, carrier));
         let scene: DAffine3 = carrier.to_affine();
         for frame in 0..clip.grid.count() {
@@ -360,14 +370,14 @@ fn captures_on_figures_they_were_not_made_for() {
             };
             let clip = open(&clip).clips[0].clone();
             let target = open(&onto).skeleton().expect("a skeleton");
-            let loose = carried(&clip, &target, Options { plant_feet: false, measure: true }).report;
+            let loose = carried(&clip, &target, Options::default()).report;
             // Arms and legs point exactly where the source's do.
             assert!(
                 loose.worst_direction_rad().to_degrees() < 1e-3,
                 "{capture} on {figure}: {:?}",
                 loose.directions
             );
-            let held = carried(&clip, &target, Options { plant_feet: true, measure: true });
+            let held = carried(&clip, &target, Options { plant_feet: true, ..Options::default() });
             let (Some(slide), Some(drift)) = (held.report.slide, held.report.drift) else {
                 panic!("feet were found")
             };
@@ -428,4 +438,352 @@ fn a_fingerprint_tells_skeletons_apart_and_not_files() {
     assert_eq!(print, fingerprint(&own.clone().map_places(|p| p * 100.0).skeleton()));
     assert_ne!(print, fingerprint(&person(&B).skeleton()));
     assert_ne!(print, fingerprint(&own.map_places(|p| DVec3::new(p.x, 1.1 * p.y, p.z)).skeleton()));
+}
+
+/// A clip of a figure that stands and moves its arms and trunk.
+fn standing(skeleton: &Arc<Skeleton>, build: &Build) -> Clip {
+    let mut clip = sway(skeleton, 60, 0.0);
+    let legs: Vec<usize> = Side::BOTH
+        .iter()
+        .flat_map(|&side| [Role::UpperLeg(side), Role::LowerLeg(side), Role::Foot(side), Role::Toes(side)])
+        .map(|role| build.at(role))
+        .chain([build.at(Role::Hips)])
+        .collect();
+    for joint in legs {
+        clip.joints[joint] = Arc::default();
+    }
+    clip
+}
+
+fn joint_place(clip: &Clip, joint: usize, frame: usize) -> DVec3 {
+    clip.world_at(clip.grid.time(frame))[joint].position()
+}
+
+#[test]
+fn a_single_pose_is_that_of_the_whole_transfer() {
+    let clip = Arc::new(sway(&Arc::new(person(&B).skeleton()), 20, 1.0));
+    let (source, target) = (
+        Figure::new(&clip.skeleton),
+        Figure::new(&Arc::new(person(&D).map_places(|p| DVec3::new(1.2 * p.x, 0.8 * p.y, p.z)).skeleton())),
+    );
+    let map = JointMap::automatic(&source, &target);
+    let whole = retarget(&clip, &source, &target, &map, &Options::bare()).expect("it is mapped").clip;
+    let transfer = Transfer::new(&clip, &source, &target, &map).expect("it is mapped");
+    for frame in 0..20 {
+        let secs = clip.grid.time(frame);
+        for (own, its) in transfer.pose_at(secs).iter().zip(whole.local_at(secs)) {
+            assert!(own.rotation.turn_to(its.rotation) < 1e-12);
+            assert!(own.translation.distance(its.translation) < 1e-12);
+        }
+    }
+}
+
+#[test]
+fn hands_are_held_at_points_and_at_each_other() {
+    let build = person(&A);
+    let skeleton = Arc::new(build.skeleton());
+    let clip = standing(&skeleton, &build);
+    let stocky = person(&B).map_places(|p| DVec3::new(1.1 * p.x, 0.9 * p.y, p.z));
+    let target = Arc::new(stocky.skeleton());
+    let loose = carried(&clip, &target, Options::default());
+    let hand = |side| stocky.at(Role::Hand(side));
+    let [left, right] = Side::BOTH.map(hand);
+    let point = joint_place(&loose.clip, left, 25) + DVec3::new(-0.1, 0.05, 0.02);
+    let hold = HandHold { side: Side::Left, span_secs: [0.5, 1.0], at: HoldAt::Place(point) };
+    let hands = vec![hold];
+    let held = carried(&clip, &target, Options { hands, ..Options::default() });
+    for frame in 15..=30 {
+        assert!(joint_place(&held.clip, left, frame).distance(point) < 1e-6, "frame {frame}");
+        // The hand keeps its turn, and the other one all it has.
+        let secs = clip.grid.time(frame);
+        let [own, its] = [&loose.clip, &held.clip].map(|clip| clip.world_at(secs));
+        assert!(own[left].rotation.turn_to(its[left].rotation) < 1e-9);
+        assert_eq!(own[right], its[right]);
+    }
+    assert!(held.report.missed.is_empty(), "{:?}", held.report.missed);
+    assert!(held.report.largest_correction.is_some());
+    // No jump: from frame to frame the held hand never moves much faster than the loose one.
+    let fastest = |clip: &Clip| {
+        let step = |frame| joint_place(clip, left, frame).distance(joint_place(clip, left, frame + 1));
+        (0..59).map(step).fold(0.0, f64::max)
+    };
+    assert!(fastest(&held.clip) < 2.5 * fastest(&loose.clip) + 0.01);
+
+    // Out of reach: told, with frame and size.
+    let far = HandHold { at: HoldAt::Place(point + DVec3::X * 2.0), ..hold };
+    let missed = carried(&clip, &target, Options { hands: vec![far], ..Options::default() });
+    let [own] = missed.report.missed.as_slice() else { panic!("{:?}", missed.report.missed) };
+    let off = joint_place(&missed.clip, left, own.frame).distance(point + DVec3::X * 2.0);
+    assert!((own.by - off).abs() < 1e-9 && own.joint == left && (15..=30).contains(&own.frame), "{own:?}");
+
+    // At each other: as far apart, and in the direction, as in the source, scaled by the legs.
+    let both = HandHold { side: Side::Left, span_secs: [0.5, 1.0], at: HoldAt::OtherHand };
+    let held = carried(&clip, &target, Options { hands: vec![both], ..Options::default() });
+    let own = Side::BOTH.map(|side| build.at(Role::Hand(side)));
+    for frame in 15..=30 {
+        let apart =
+            |clip: &Clip, [a, b]: [usize; 2]| joint_place(clip, b, frame) - joint_place(clip, a, frame);
+        let wanted = apart(&clip, own) * held.report.scale;
+        let is_told = !held.report.missed.is_empty();
+        assert!(apart(&held.clip, [left, right]).distance(wanted) < 1e-6 || is_told, "frame {frame}");
+    }
+    assert!(held.report.missed.is_empty(), "{:?}", held.report.missed);
+}
+
+#[test]
+fn limits_are_kept_after_all_else_and_what_they_cost_is_told() {
+    let build = person(&A);
+    let skeleton = Arc::new(build.skeleton());
+    let mut clip = standing(&skeleton, &build);
+    // Both knees bend by 60 degrees and the hips go down with them, so that the feet stand.
+    let legs = |build: &Build, side| [Role::UpperLeg(side), Role::LowerLeg(side)].map(|role| build.at(role));
+    let times = Times::Even { step_secs: 1.0 / 30.0, count: 60 };
+    for side in Side::BOTH {
+        for (joint, angle) in legs(&build, side).into_iter().zip([-30.0_f64, 60.0]) {
+            let turn = Rotor::from_plane_angles(Bivector::from_axis(DVec3::X * angle.to_radians()));
+            let track = RotationTrack::from_rotors(times.clone(), vec![turn; 60]);
+            clip = clip.with_rotation(joint, track);
+        }
+    }
+    let target_build = person(&B).map_places(|p| DVec3::new(1.1 * p.x, 0.9 * p.y, p.z));
+    let target = Arc::new(target_build.skeleton());
+    let knee = legs(&target_build, Side::Left)[1];
+    // A knee that bends by 40 degrees at most.
+    let hinge = Range {
+        swing: SwingLimit::Hinge { bend: Interval::from_degrees(-5.0, 40.0), give_rad: 0.3 },
+        twist: Interval::FREE,
+    };
+    let limit = JointLimit::new(target.joints()[knee].rest.rotation, DVec3::Y, DVec3::X, hinge);
+    let limits = Arc::new(Limits { title: "stiff".to_owned(), joints: [(knee, limit)].into() });
+    let feet = vec![FootContact { side: Side::Left, part: FootPart::Heel, span_secs: [0.2, 1.5] }];
+    let options = Options {
+        plant_feet: true,
+        feet: Some(feet),
+        limits: Some(KeptLimits::Given(Arc::clone(&limits))),
+        ..Options::default()
+    };
+    let made = carried(&clip, &target, options);
+    let own = limits.keeping(&made.clip);
+    assert!(own.iter().all(|own| own.beyond_limit == 0), "{own:?}");
+    let [told] = made.report.limits.as_slice() else { panic!("{:?}", made.report.limits) };
+    assert_eq!((told.joint, told.beyond), (knee, 0));
+    assert!(told.beyond_before > 30 && told.most_beyond_before_rad > 0.2, "{told:?}");
+    assert_eq!(made.report.limits_title, "stiff");
+    assert!(made.report.largest_clamp.is_some_and(|own| own.joint == knee && own.by_rad > 0.2));
+    // The leg can no longer stand where it stood: that is listed.
+    let missed = &made.report.missed;
+    assert!(missed.iter().any(|own| own.what.contains("limits") && own.by > 0.01), "{missed:?}");
+
+    // The preset for adults: within it too.
+    let options = Options { limits: Some(KeptLimits::Adult), ..Options::default() };
+    let made = carried(&sway(&skeleton, 40, 1.0), &target, options);
+    assert!(made.report.limits.len() > 8 && made.report.limits.iter().all(|own| own.beyond == 0));
+}
+
+#[test]
+fn contacts_are_found_given_written_and_read() {
+    let Some(path) = shared("data/bvh/cmu_02_01_walk.bvh") else { return };
+    let source = exchange::open(&path, &exchange::OpenOptions::default()).expect("it opens");
+    let clip = &source.clips[0];
+    let figure = Figure::new(&clip.skeleton);
+    let target = Arc::new(person(&B).map_places(|p| p * 20.0).skeleton());
+    let found = find_contacts(clip, &figure);
+    assert!(found.len() > 4);
+    let options = |feet| Options { plant_feet: true, feet, ..Options::default() };
+    let by_itself = carried(clip, &target, options(None));
+    let said = carried(clip, &target, options(Some(found.clone())));
+    assert_eq!(by_itself, said, "the same whether found or given");
+    // One fewer: that foot is free there.
+    let fewer = carried(clip, &target, options(Some(found[1..].to_vec())));
+    assert_eq!(fewer.report.n_plants + 1, said.report.n_plants);
+    assert_ne!(fewer.clip, said.clip);
+    let beyond = FootContact { span_secs: [100.0, 101.0], ..found[0] };
+    let told = carried(clip, &target, options(Some(vec![beyond])));
+    assert!(
+        told.report.notes.iter().any(|note| note.contains("outside the clip")),
+        "{:?}",
+        told.report.notes
+    );
+
+    let hands = vec![
+        HandHold { side: Side::Right, span_secs: [0.25, 0.5], at: HoldAt::Place(DVec3::new(0.1, -2.0, 3.5)) },
+        HandHold { side: Side::Left, span_secs: [1.0, 1.5], at: HoldAt::OtherHand },
+        HandHold { side: Side::Left, span_secs: [2.0, 2.5], at: HoldAt::Still },
+    ];
+    for feet in [Some(found), Some(vec![]), None] {
+        let all = Contacts { feet, hands: hands.clone() };
+        assert_eq!(read_contacts(&write_contacts(&all)), Ok(all));
+    }
+    let wrong = |text: &str, line, expected: &str| {
+        let error = read_contacts(text).expect_err("it is wrong");
+        assert_eq!((error.line, error.expected), (line, expected));
+    };
+    wrong("", 1, "the heading side,part,first_s,last_s,at");
+    wrong("side,part,first_s,last_s\nleft,knee,0,1\n", 2, "heel, ball or hand");
+    wrong("side,part,first_s,last_s\nleft,heel,2,1\n", 2, "a last second that is not before the first");
+    wrong("side,part,first_s,last_s\nleft,heel,0,NaN\n", 2, "a time in seconds");
+}
+
+#[test]
+fn any_pose_can_count_as_rest() {
+    // Frame 0 of the source is bent anyhow; with it as rest of both figures the target stands in its own rest at frame 0.
+    let skeleton = Arc::new(person(&A).skeleton());
+    let clip = sway(&skeleton, 20, 1.0);
+    let build = arms_down(person(&B), 60.0).map_places(|p| DVec3::new(1.1 * p.x, 0.9 * p.y, p.z));
+    let target = Figure::new(&Arc::new(build.skeleton()));
+    let at_frame = RestPick { frame_secs: Some(0.0), is_straightened: false };
+    let source = at_frame.figure(&skeleton, Some(&clip), None);
+    assert_eq!(source.rest, clip.local_at(0.0));
+    assert_eq!(at_frame.figure(&skeleton, None, None).rest, skeleton.rest_pose(), "without a clip its own");
+
+    // Straightened: arms level, legs down, whatever they were before, and limbs still point as in the source.
+    let straight = RestPick { frame_secs: None, is_straightened: true };
+    let figure = straight.figure(&target.skeleton, None, None);
+    let shape = &figure.roles.shape;
+    for side in Side::BOTH {
+        let out = if side == Side::Left { shape.left } else { -shape.left };
+        for role in [Role::UpperArm(side), Role::LowerArm(side)] {
+            let joint = figure.roles.joint(role).expect("an arm");
+            let off = shape.limb_direction(joint).expect("it points").angle_between(out).to_degrees();
+            assert!(off < 0.5, "{role:?} {off}");
+        }
+    }
+    let source = Figure::new(&skeleton);
+    let map = JointMap::automatic(&source, &figure);
+    let made = retarget(&clip, &source, &figure, &map, &Options::default()).expect("it is mapped");
+    assert!(made.report.worst_direction_rad() < 1e-6);
+}
+
+#[test]
+fn units_and_up_axes_are_recognised() {
+    let clip = sway(&Arc::new(person(&B).skeleton()), 20, 1.0);
+    let plain_target = person(&D).map_places(|p| DVec3::new(1.2 * p.x, 0.8 * p.y, p.z));
+    let expected = carried(&clip, &Arc::new(plain_target.skeleton()), Options::default());
+    let upright: fn(DVec3) -> DVec3 = |p| p;
+    let z_up: fn(DVec3) -> DVec3 = |p| DVec3::new(p.x, -p.z, p.y);
+    for (factor, unit, axes) in [
+        (100.0, "centimetres", upright),
+        (1.0, "", z_up),
+        (100.0, "centimetres", z_up),
+        (1000.0, "millimetres", upright),
+    ] {
+        let target = plain_target.clone().map_places(|p| axes(p) * factor);
+        let found = carried(&clip, &Arc::new(target.skeleton()), Options::default());
+        assert!((found.report.scale - expected.report.scale * factor).abs() < 1e-9 * factor);
+        let said = found.report.notes.iter().any(|note| note.contains(unit) && note.contains("metres"));
+        assert!(unit.is_empty() || said, "{:?}", found.report.notes);
+        for frame in 0..20 {
+            let [own, its] = [&expected.clip, &found.clip].map(|clip| clip.world_at(clip.grid.time(frame)));
+            for (own, its) in own.iter().zip(&its) {
+                let place = axes(own.position()) * factor;
+                assert!(place.distance(its.position()) < 1e-6 * factor, "{place} {}", its.position());
+            }
+        }
+    }
+}
+
+/// Two figures side by side in one file.
+fn two_figures(first: &Skeleton, second: &Skeleton) -> (Arc<Skeleton>, usize) {
+    let count = first.len();
+    let moved = second.joints().iter().map(|joint| Joint {
+        name: format!("{}_b", joint.name),
+        number: joint.number + 500,
+        parent: joint.parent.map(|up| up + count),
+        rest: Transform {
+            translation: joint.rest.translation
+                + if joint.parent.is_none() { DVec3::X * 3.0 } else { DVec3::ZERO },
+            ..joint.rest
+        },
+        ..joint.clone()
+    });
+    let joints: Vec<Joint> = first.joints().iter().cloned().chain(moved).collect();
+    (Arc::new(Skeleton::new(joints).expect("parents stand first")), count)
+}
+
+#[test]
+fn of_two_figures_in_a_file_either_can_be_chosen() {
+    let clip = sway(&Arc::new(person(&B).skeleton()), 12, 1.0);
+    let second = person(&D).map_places(|p| DVec3::new(1.2 * p.x, 0.8 * p.y, p.z));
+    let (both, count) = two_figures(&person(&A).skeleton(), &second.skeleton());
+    let source = Figure::new(&clip.skeleton);
+    let by_itself = Figure::new(&both);
+    let others = by_itself.roles.other_figures.clone();
+    assert_eq!(others.len(), 1, "{:?}", by_itself.roles.doubts);
+    let first_root = if others[0] == count { 0 } else { count };
+    for root in [first_root, others[0]] {
+        let target = Figure::below(&both, both.rest_pose(), Some(root));
+        let map = JointMap::automatic(&source, &target);
+        let made = retarget(&clip, &source, &target, &map, &Options::default()).expect("it is mapped");
+        assert!(made.report.worst_direction_rad() < 1e-6);
+        let own = if root == count { count..both.len() } else { 0..count };
+        for (joint, tracks) in made.clip.joints.iter().enumerate() {
+            assert!(own.contains(&joint) || tracks.rotation.is_none(), "{}", both.label(joint));
+        }
+        assert!(made.report.driven[0] > 15);
+        // The other figure in the file changes nothing of it.
+        if root == count {
+            let alone = plain(&clip, &Arc::new(second.skeleton()));
+            for frame in 0..12 {
+                let [all, alone] = [&made.clip, &alone].map(|clip| clip.world_at(clip.grid.time(frame)));
+                for (own, its) in all[count..].iter().zip(&alone) {
+                    assert!(own.rotation.turn_to(its.rotation) < 1e-9);
+                    assert!((own.position() - DVec3::X * 3.0).distance(its.position()) < 1e-9);
+                }
+            }
+        }
+    }
+}
+
+#[test]
+fn a_long_foot_does_not_dip_below_the_floor_between_plants() {
+    let Some(path) = shared("data/bvh/cmu_02_01_walk.bvh") else { return };
+    let source = exchange::open(&path, &exchange::OpenOptions::default()).expect("it opens");
+    let clip = &source.clips[0];
+    // Feet twice as long.
+    let build = person(&B);
+    let ankles = Side::BOTH.map(|side| build.places[build.at(Role::Foot(side))]);
+    let long = build.map_places(|p| {
+        let ankle = ankles[usize::from(p.x < 0.0)];
+        if p.y < ankle.y && p.z > ankle.z { DVec3::new(p.x, p.y, ankle.z + 2.0 * (p.z - ankle.z)) } else { p }
+    });
+    let target = Arc::new(long.skeleton());
+    let made = carried(clip, &target, Options { plant_feet: true, ..Options::default() });
+    let leg = Figure::new(&target).roles.shape.leg_length;
+    let [before, after] = made.report.deepest_dip.expect("feet were found");
+    // The capture's frame 0 is a T-pose, out of which the first step jumps.
+    assert!(before > 0.04 * leg && after < 0.02 * leg, "{before} {after} for a leg of {leg}");
+    // What is less than a thousandth of the leg is not listed.
+    assert!(made.report.missed.iter().all(|missed| missed.by > 1e-3 * leg), "{:?}", made.report.missed);
+}
+
+#[test]
+fn a_map_is_kept_for_its_two_skeletons() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let source = Figure::new(&Arc::new(person(&B).skeleton()));
+    let target = Figure::new(&Arc::new(person(&D).map_places(|p| p * DVec3::new(1.0, 0.9, 1.0)).skeleton()));
+    let mut map = JointMap::automatic(&source, &target);
+    assert!(joint_maps::kept(folder.path(), &source, &target).expect("it looks").is_none());
+    let find = |figure: &Figure, name: &str| figure.skeleton.find(name).expect("it is there");
+    let row = MapRow { source: Some(find(&source, "lwrist")), target: Some(find(&target, "Head")) };
+    map.correct(&[row]);
+    let path = joint_maps::keep(folder.path(), &map, &source, &target).expect("it writes");
+    let (kept, rows) =
+        joint_maps::kept(folder.path(), &source, &target).expect("it reads").expect("it is kept");
+    assert_eq!(kept, path);
+    let mut again = JointMap::automatic(&source, &target);
+    again.correct(&rows);
+    let pairs = |map: &JointMap| map.links.iter().map(|link| (link.source, link.target)).collect::<Vec<_>>();
+    assert_eq!(pairs(&again), pairs(&map));
+    // Another size is the same skeleton, other names are not.
+    let large = Figure::new(&Arc::new(person(&B).map_places(|p| p * 100.0).skeleton()));
+    assert!(joint_maps::kept(folder.path(), &large, &target).expect("it looks").is_some());
+    let other = Figure::new(&Arc::new(person(&A).skeleton()));
+    assert!(joint_maps::kept(folder.path(), &other, &target).expect("it looks").is_none());
+    std::fs::write(&path, "nonsense").expect("it writes");
+    assert!(
+        joint_maps::kept(folder.path(), &source, &target)
+            .expect_err("it is damaged")
+            .to_string()
+            .contains("heading")
+    );
 }

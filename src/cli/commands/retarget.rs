@@ -4,13 +4,18 @@ use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use crate::cli::DONE;
-use crate::cli::args::RetargetArgs;
+use crate::cli::args::{RetargetArgs, Straighten};
 use crate::cli::error::CliError;
 use crate::cli::input;
+use crate::cli::limits::LimitsSource;
 use crate::cli::output::Output;
-use crate::exchange::{self, ClipAddress, Format, Guard, Source, disk};
+use crate::clip::Clip;
+use crate::exchange::{self, ClipAddress, Format, Guard, Source, disk, joint_maps};
 use crate::proof;
-use crate::retarget::{self, Figure, JointMap, Options};
+use crate::retarget::{
+    self, Contacts, Figure, JointMap, KeptLimits, Options, RestPick, find_contacts, read_contacts,
+    write_contacts,
+};
 use crate::skeleton::Skeleton;
 
 /// The most doubts told; all are in the sheet.
@@ -23,9 +28,10 @@ pub(crate) fn run(args: &RetargetArgs, output: &mut Output) -> Result<u8, CliErr
     let (onto, skeleton) = open_onto(args, output)?;
     let mut inputs: Vec<PathBuf> = input.files();
     inputs.push(onto.path.clone());
-    inputs.extend(args.map.clone());
+    inputs.extend([&args.map, &args.contacts].into_iter().flatten().cloned());
     let guard = Guard { inputs, force: args.force };
-    for target in [Some(&args.output), args.save_map.as_ref(), args.proof.as_ref()].into_iter().flatten() {
+    let more = [&args.save_map, &args.save_contacts, &args.proof];
+    for target in std::iter::once(&args.output).chain(more.into_iter().flatten()) {
         guard.check(target)?;
     }
     if input.chosen.len() > 1 {
@@ -34,37 +40,22 @@ pub(crate) fn run(args: &RetargetArgs, output: &mut Output) -> Result<u8, CliErr
         output.note(&input.source.path, &text);
     }
     let clip = input.clip();
-    let source = Figure::new(&clip.skeleton);
-    let target = Figure::new(&skeleton);
-    let mut map = JointMap::automatic(&source, &target);
-    if let Some(path) = &args.map {
-        let text = String::from_utf8_lossy(&disk::read(path)?).into_owned();
-        let wrong = |source| CliError::Map { path: path.clone(), source };
-        let rows = retarget::read_map(&text, &source.skeleton, &target.skeleton).map_err(wrong)?;
-        for (who, figure) in [("source", &source), ("target", &target)] {
-            let own = retarget::fingerprint(&figure.skeleton);
-            let said = text.lines().find_map(|line| line.strip_prefix(&format!("# {who} skeleton ")));
-            if said.is_some_and(|said| said.trim() != own) {
-                output.note(path, &format!("was saved for another {who} skeleton; look whether it fits"));
-            }
-        }
-        map.correct(&rows);
-    }
-    // A person's map answers the questions.
-    if args.map.is_none() {
-        for doubt in map.doubts.iter().take(MOST_DOUBTS) {
-            output.note(&onto.path, &format!("{doubt}; say it with --map"));
-        }
-        if map.doubts.len() > MOST_DOUBTS {
-            output.note(&onto.path, &format!("{} more doubts", map.doubts.len() - MOST_DOUBTS));
-        }
-    }
-    if let Some(path) = &args.save_map {
-        disk::write(path, retarget::write_map(&map, &source, &target).as_bytes())?;
-        output.say(&format!("wrote {}", path.display()));
-    }
-    let options = Options { plant_feet: args.plant_feet, measure: true };
-    let made = retarget::retarget(clip, &source, &target, &map, options)
+    let [source, target] = figures(args, clip, [&input.source.path, &onto.path], &onto, &skeleton)?;
+    let map = joint_map(args, [&source, &target], &onto.path, output)?;
+    let limits = LimitsSource::open(args.limits.as_ref())?;
+    let limits = match limits.for_skeleton(&skeleton, output)? {
+        Some(limits) => Some(KeptLimits::Given(limits)),
+        None => args.limits.is_some().then_some(KeptLimits::Adult),
+    };
+    let contacts = contacts(args, clip, &source, output)?;
+    let options = Options {
+        plant_feet: args.plant_feet || contacts.feet.is_some(),
+        feet: contacts.feet,
+        hands: contacts.hands,
+        limits,
+        measure: true,
+    };
+    let made = retarget::retarget(clip, &source, &target, &map, &options)
         .map_err(|source| CliError::Retarget { path: onto.path.clone(), source })?;
     for note in &made.report.notes {
         output.note(&onto.path, note);
@@ -84,6 +75,140 @@ pub(crate) fn run(args: &RetargetArgs, output: &mut Output) -> Result<u8, CliErr
     output.notes(&args.output, &written.notes);
     output.say(&format!("wrote {}", args.output.display()));
     Ok(DONE)
+}
+
+/// Both figures, each in the pose that counts as its rest.
+fn figures(
+    args: &RetargetArgs,
+    clip: &Clip,
+    [own_path, onto_path]: [&Path; 2],
+    onto: &Source,
+    skeleton: &Arc<Skeleton>,
+) -> Result<[Figure; 2], CliError> {
+    let root = |option: &str, path: &Path, skeleton: &Skeleton, label: Option<&String>| {
+        let Some(label) = label else { return Ok(None) };
+        skeleton.find(label).map(Some).ok_or_else(|| CliError::Argument {
+            place: format!("{option} {label}"),
+            expected: format!("a joint of {}", path.display()),
+            found: "none of that name".to_owned(),
+            advice: "see `turnwright sample` for the names",
+        })
+    };
+    let roots = [
+        root("--root", own_path, &clip.skeleton, args.root.as_ref())?,
+        root("--onto-root", onto_path, skeleton, args.onto_root.as_ref())?,
+    ];
+    let onto_clip = onto.clips.first();
+    if args.onto_rest_at.is_some() && onto_clip.is_none() {
+        return Err(CliError::Argument {
+            place: "--onto-rest-at".to_owned(),
+            expected: format!("a clip in {}", onto_path.display()),
+            found: "none".to_owned(),
+            advice: "leave the option out",
+        });
+    }
+    let is_straightened =
+        |own: Straighten| args.straighten.is_some_and(|wanted| wanted == own || wanted == Straighten::Both);
+    let rests = [
+        RestPick { frame_secs: args.rest_at, is_straightened: is_straightened(Straighten::Source) },
+        RestPick { frame_secs: args.onto_rest_at, is_straightened: is_straightened(Straighten::Target) },
+    ];
+    Ok([
+        rests[0].figure(&clip.skeleton, Some(clip), roots[0]),
+        rests[1].figure(skeleton, onto_clip.map(|clip| &**clip), roots[1]),
+    ])
+}
+
+/// The map: found, with the corrections of a file or those kept for these two skeletons.
+fn joint_map(
+    args: &RetargetArgs,
+    [source, target]: [&Figure; 2],
+    onto: &Path,
+    output: &mut Output,
+) -> Result<JointMap, CliError> {
+    let mut map = JointMap::automatic(source, target);
+    let folder = joint_maps::folder();
+    let mut is_corrected = false;
+    if let Some(path) = &args.map {
+        let text = String::from_utf8_lossy(&disk::read(path)?).into_owned();
+        let wrong = |source| CliError::Map { path: path.clone(), source };
+        let rows = retarget::read_map(&text, &source.skeleton, &target.skeleton).map_err(wrong)?;
+        for (who, figure) in [("source", source), ("target", target)] {
+            let own = retarget::fingerprint(&figure.skeleton);
+            let said = text.lines().find_map(|line| line.strip_prefix(&format!("# {who} skeleton ")));
+            if said.is_some_and(|said| said.trim() != own) {
+                output.note(path, &format!("was saved for another {who} skeleton; look whether it fits"));
+            }
+        }
+        map.correct(&rows);
+        is_corrected = true;
+    } else if let Some(folder) = folder.as_ref().filter(|_| !args.no_kept_map)
+        && let Some((path, rows)) = joint_maps::kept(folder, source, target)?
+    {
+        output.note(
+            &path,
+            "this joint map was kept for these two skeletons and is used; --no-kept-map goes without",
+        );
+        map.correct(&rows);
+        is_corrected = true;
+    }
+    // A person's map answers the questions.
+    if !is_corrected {
+        for doubt in map.doubts.iter().take(MOST_DOUBTS) {
+            output.note(onto, &format!("{doubt}; say it with --map"));
+        }
+        if map.doubts.len() > MOST_DOUBTS {
+            output.note(onto, &format!("{} more doubts", map.doubts.len() - MOST_DOUBTS));
+        }
+    }
+    for (option, figure) in [("--root", source), ("--onto-root", target)] {
+        let others = &figure.roles.other_figures;
+        if !others.is_empty() {
+            let names: Vec<String> =
+                others.iter().map(|&joint| format!("`{}`", figure.skeleton.label(joint))).collect();
+            output.note(onto, &format!("further figures hang on {}; choose with {option}", names.join(", ")));
+        }
+    }
+    if let Some(path) = &args.save_map {
+        disk::write(path, retarget::write_map(&map, source, target).as_bytes())?;
+        output.say(&format!("wrote {}", path.display()));
+    }
+    if args.keep_map {
+        let Some(folder) = &folder else {
+            return Err(CliError::Argument {
+                place: "--keep-map".to_owned(),
+                expected: "a folder for settings".to_owned(),
+                found: "none".to_owned(),
+                advice: "name one in TURNWRIGHT_MAPS",
+            });
+        };
+        let path = joint_maps::keep(folder, &map, source, target)?;
+        output.say(&format!("kept the joint map as {}", path.display()));
+    }
+    Ok(map)
+}
+
+/// When feet stand and which hands are held: what a file says, and written where that was asked for.
+fn contacts(
+    args: &RetargetArgs,
+    clip: &Clip,
+    source: &Figure,
+    output: &mut Output,
+) -> Result<Contacts, CliError> {
+    let contacts = match &args.contacts {
+        Some(path) => {
+            let text = String::from_utf8_lossy(&disk::read(path)?).into_owned();
+            read_contacts(&text).map_err(|source| CliError::Contacts { path: path.clone(), source })?
+        }
+        None => Contacts::default(),
+    };
+    if let Some(path) = &args.save_contacts {
+        let feet = contacts.feet.clone().unwrap_or_else(|| find_contacts(clip, source));
+        let all = Contacts { feet: Some(feet), hands: contacts.hands.clone() };
+        disk::write(path, write_contacts(&all).as_bytes())?;
+        output.say(&format!("wrote {}", path.display()));
+    }
+    Ok(contacts)
 }
 
 fn file_name(path: &Path) -> String {
@@ -129,15 +254,28 @@ fn summary(report: &retarget::Report, target: &Skeleton) -> Vec<String> {
             largest.frame
         ));
     }
-    for missed in report.missed.iter().take(8) {
+    if !report.limits.is_empty() {
+        let count = |of: &dyn Fn(&retarget::LimitUse) -> usize| report.limits.iter().map(of).sum::<usize>();
+        let (before, after) = (count(&|own| own.beyond_before), count(&|own| own.beyond));
+        let worst = report.limits.iter().max_by(|a, b| a.most_use.total_cmp(&b.most_use));
+        let worst = worst.map_or(String::new(), |own| {
+            format!("; most used {:.0} %: {}", own.most_use * 100.0, target.label(own.joint))
+        });
         lines.push(format!(
-            "not met: {} ({}, frame {}, by {:.4})",
-            missed.what,
-            target.label(missed.joint),
-            missed.frame,
-            missed.by
+            "limits {} of {} joints: {before} joint frames beyond before, {after} after{worst}",
+            report.limits_title,
+            report.limits.len()
         ));
     }
+    if let Some(largest) = &report.largest_clamp {
+        lines.push(format!(
+            "largest change by limits {:.2} degrees: {} at frame {}",
+            largest.by_rad.to_degrees(),
+            target.label(largest.joint),
+            largest.frame
+        ));
+    }
+    lines.extend(report.missed.iter().take(8).map(|missed| missed.sentence(target)));
     if report.missed.len() > 8 {
         lines.push(format!("not met: {} more", report.missed.len() - 8));
     }

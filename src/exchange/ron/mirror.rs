@@ -4,8 +4,8 @@ use serde::{Deserialize, Serialize};
 
 pub(super) use super::super::limits::mirror::Joint as JointLimit;
 
-/// The newest version this program knows. 1 holds mends alone; 2 all other passes too; 3 markers and what else is looked
-/// for. A scene is written in the oldest
+/// The newest version this program knows. 1 holds mends alone; 2 all other passes too; 3 markers, what else is looked for, and what a
+/// retarget holds and measures from. A scene is written in the oldest
 /// version that holds it, so that an older program opens what it can.
 pub(super) const VERSION: u32 = 3;
 
@@ -125,6 +125,17 @@ pub(super) enum Step {
         #[serde(default, skip_serializing_if = "Vec::is_empty")]
         rows: Vec<(Option<String>, Option<String>)>,
         plant_feet: bool,
+        /// Of source and target.
+        #[serde(default, skip_serializing_if = "are_plain")]
+        rests: (RestPick, RestPick),
+        #[serde(default, skip_serializing_if = "are_none")]
+        roots: (Option<String>, Option<String>),
+        #[serde(default, skip_serializing_if = "Option::is_none")]
+        feet: Option<Vec<FootContact>>,
+        #[serde(default, skip_serializing_if = "Vec::is_empty")]
+        hands: Vec<HandHold>,
+        #[serde(default, skip_serializing_if = "Option::is_none")]
+        limits: Option<KeptLimits>,
     },
     Push {
         pushes: Vec<Push>,
@@ -141,6 +152,69 @@ pub(super) enum Step {
         keep_seconds: Vec<f64>,
     },
     Limits(LimitsPass),
+}
+
+/// The fields of [`Step::Retarget`].
+pub(super) struct Retarget {
+    pub(super) onto: usize,
+    pub(super) rows: Vec<(Option<String>, Option<String>)>,
+    pub(super) plant_feet: bool,
+    pub(super) rests: (RestPick, RestPick),
+    pub(super) roots: (Option<String>, Option<String>),
+    pub(super) feet: Option<Vec<FootContact>>,
+    pub(super) hands: Vec<HandHold>,
+    pub(super) limits: Option<KeptLimits>,
+}
+
+/// Which pose counts as rest.
+#[derive(Default, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct RestPick {
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) frame_seconds: Option<f64>,
+    #[serde(default)]
+    pub(super) straightened: bool,
+}
+
+/// A time in which a foot stands.
+#[derive(Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct FootContact {
+    pub(super) side: String,
+    pub(super) part: String,
+    pub(super) seconds: (f64, f64),
+}
+
+/// A time in which a hand is held.
+#[derive(Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub(super) struct HandHold {
+    pub(super) side: String,
+    pub(super) seconds: (f64, f64),
+    pub(super) at: HoldAt,
+}
+
+#[derive(Serialize, Deserialize)]
+pub(super) enum HoldAt {
+    Still,
+    /// In the target's scene.
+    Place(f64, f64, f64),
+    OtherHand,
+}
+
+#[derive(Serialize, Deserialize)]
+pub(super) enum KeptLimits {
+    Adult,
+    Given(Limits),
+}
+
+fn are_plain(rests: &(RestPick, RestPick)) -> bool {
+    *rests == Default::default()
+}
+
+#[expect(clippy::ref_option, reason = "serde hands over a reference")]
+fn are_none(roots: &(Option<String>, Option<String>)) -> bool {
+    roots.0.is_none() && roots.1.is_none()
 }
 
 /// Another clip blended in.
@@ -283,6 +357,10 @@ impl Step {
             ["broken-value", "sign-flip", "wrap", "mirrored-angles", "long-way", "half-turn", "spike"];
         match self {
             Self::Mend { kind, .. } if KINDS.contains(&kind.as_str()) => 1,
+            Self::Retarget { rests, roots, feet, hands, limits, .. } => {
+                let is_plain = are_plain(rests) && are_none(roots) && feet.is_none();
+                if is_plain && hands.is_empty() && limits.is_none() { 2 } else { 3 }
+            }
             _ => 2,
         }
     }

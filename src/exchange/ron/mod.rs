@@ -4,6 +4,7 @@ mod error;
 mod key_edits;
 mod limits;
 mod mirror;
+mod retarget;
 mod scene_file;
 mod steps;
 

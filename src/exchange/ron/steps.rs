@@ -4,8 +4,8 @@ use crate::blend::{JoinPlace, MixAlong, Reference, RootFrom, Side};
 use crate::clip::{Foot, JointPoint, Kernel, KeyEdit, Push, PushFrame, Smoothing};
 use crate::rotor::{Bivector, Rotor};
 use crate::scene::{
-    BlendForm, BlendPass, ClipRef, KeysPass, MendPass, PassStep, PushPass, ReducePass, ResamplePass,
-    RetargetPass, Scope, SmoothPass,
+    BlendForm, BlendPass, ClipRef, KeysPass, MendPass, PassStep, PushPass, ReducePass, ResamplePass, Scope,
+    SmoothPass,
 };
 use crate::skeleton::TwoJointLimb;
 use crate::snag::{LoopClose, LoopForm, Plant, Remedy, Snag, SnagKind};
@@ -13,6 +13,7 @@ use crate::snag::{LoopClose, LoopForm, Plant, Remedy, Snag, SnagKind};
 use super::key_edits::{key_edit_from, key_edit_to};
 use super::limits::{limit_from, limits_pass_from, limits_pass_to};
 use super::mirror;
+use super::retarget::{retarget_from, retarget_to};
 
 /// A step as the document holds it.
 pub(super) fn step_from(step: mirror::Step) -> Result<PassStep, String> {
@@ -26,7 +27,10 @@ pub(super) fn step_from(step: mirror::Step) -> Result<PassStep, String> {
         }
         mirror::Step::Resample { rate } => ResamplePass { rate }.into(),
         mirror::Step::Blend(blend) => blend_from(blend).into(),
-        mirror::Step::Retarget { onto, rows, plant_feet } => RetargetPass { onto, rows, plant_feet }.into(),
+        mirror::Step::Retarget { onto, rows, plant_feet, rests, roots, feet, hands, limits } => {
+            retarget_from(mirror::Retarget { onto, rows, plant_feet, rests, roots, feet, hands, limits })?
+                .into()
+        }
         mirror::Step::Smooth { scope, kernel, cutoff_hz, most_deg, amount, with_places, masks } => {
             amount_in_range(amount)?;
             let kernel = Kernel::named(&kernel)
@@ -70,7 +74,9 @@ pub(super) fn step_to(step: &PassStep, label: &dyn Fn(usize) -> String) -> mirro
         PassStep::Resample(pass) => mirror::Step::Resample { rate: pass.rate },
         PassStep::Blend(pass) => mirror::Step::Blend(blend_to(pass)),
         PassStep::Retarget(pass) => {
-            mirror::Step::Retarget { onto: pass.onto, rows: pass.rows.clone(), plant_feet: pass.plant_feet }
+            let mirror::Retarget { onto, rows, plant_feet, rests, roots, feet, hands, limits } =
+                retarget_to(pass);
+            mirror::Step::Retarget { onto, rows, plant_feet, rests, roots, feet, hands, limits }
         }
         PassStep::Smooth(pass) => mirror::Step::Smooth {
             scope: scope_to(&pass.scope),

@@ -1,0 +1,96 @@
+//! The retarget pass between the document and the file.
+
+use std::sync::Arc;
+
+use crate::clip::FootPart;
+use crate::retarget::{FootContact, HandHold, HoldAt, KeptLimits, RestPick};
+use crate::scene::RetargetPass;
+use crate::skeleton::roles::Side;
+
+use super::limits::{limits_from, limits_to};
+use super::mirror;
+
+/// The pass as the document holds it.
+pub(super) fn retarget_from(pass: mirror::Retarget) -> Result<RetargetPass, String> {
+    let feet = pass.feet.map(|feet| feet.into_iter().map(|own| foot_from(&own)).collect()).transpose()?;
+    let limits = match pass.limits {
+        None => None,
+        Some(mirror::KeptLimits::Adult) => Some(KeptLimits::Adult),
+        Some(mirror::KeptLimits::Given(limits)) => Some(KeptLimits::Given(Arc::new(limits_from(&limits)?))),
+    };
+    let rest =
+        |own: mirror::RestPick| RestPick { frame_secs: own.frame_seconds, is_straightened: own.straightened };
+    Ok(RetargetPass {
+        onto: pass.onto,
+        rows: pass.rows,
+        rests: [rest(pass.rests.0), rest(pass.rests.1)],
+        roots: [pass.roots.0, pass.roots.1],
+        plant_feet: pass.plant_feet,
+        feet,
+        hands: pass.hands.iter().map(hand_from).collect::<Result<_, String>>()?,
+        limits,
+    })
+}
+
+/// The pass as the file holds it.
+pub(super) fn retarget_to(pass: &RetargetPass) -> mirror::Retarget {
+    let foot = |own: &FootContact| mirror::FootContact {
+        side: own.side.name().to_owned(),
+        part: own.part.name().to_owned(),
+        seconds: own.span_secs.into(),
+    };
+    let hand = |own: &HandHold| mirror::HandHold {
+        side: own.side.name().to_owned(),
+        seconds: own.span_secs.into(),
+        at: match own.at {
+            HoldAt::Still => mirror::HoldAt::Still,
+            HoldAt::Place(place) => mirror::HoldAt::Place(place.x, place.y, place.z),
+            HoldAt::OtherHand => mirror::HoldAt::OtherHand,
+        },
+    };
+    let rest = |own: &RestPick| mirror::RestPick {
+        frame_seconds: own.frame_secs,
+        straightened: own.is_straightened,
+    };
+    mirror::Retarget {
+        onto: pass.onto,
+        rows: pass.rows.clone(),
+        plant_feet: pass.plant_feet,
+        rests: (rest(&pass.rests[0]), rest(&pass.rests[1])),
+        roots: (pass.roots[0].clone(), pass.roots[1].clone()),
+        feet: pass.feet.as_ref().map(|feet| feet.iter().map(foot).collect()),
+        hands: pass.hands.iter().map(hand).collect(),
+        limits: pass.limits.as_ref().map(|limits| match limits {
+            KeptLimits::Adult => mirror::KeptLimits::Adult,
+            // They are of the other skeleton, whose names nobody has here.
+            KeptLimits::Given(limits) => {
+                mirror::KeptLimits::Given(limits_to(limits, &|joint| format!("target joint {joint}")))
+            }
+        }),
+    }
+}
+
+fn side_from(text: &str) -> Result<Side, String> {
+    Side::BOTH
+        .into_iter()
+        .find(|side| side.name() == text)
+        .ok_or_else(|| format!("expected the side left or right, found `{text}`"))
+}
+
+fn foot_from(own: &mirror::FootContact) -> Result<FootContact, String> {
+    let part = FootPart::BOTH.into_iter().find(|part| part.name() == own.part);
+    let part = part.ok_or_else(|| format!("expected the part heel or ball, found `{}`", own.part))?;
+    Ok(FootContact { side: side_from(&own.side)?, part, span_secs: own.seconds.into() })
+}
+
+fn hand_from(own: &mirror::HandHold) -> Result<HandHold, String> {
+    Ok(HandHold {
+        side: side_from(&own.side)?,
+        span_secs: own.seconds.into(),
+        at: match own.at {
+            mirror::HoldAt::Still => HoldAt::Still,
+            mirror::HoldAt::Place(x, y, z) => HoldAt::Place(glam::DVec3::new(x, y, z)),
+            mirror::HoldAt::OtherHand => HoldAt::OtherHand,
+        },
+    })
+}
