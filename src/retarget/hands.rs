@@ -53,7 +53,7 @@ pub(super) fn hold_hands(
             };
             places[hold.frames.0..=hold.frames.1].fill(Some(place));
         }
-        result = held(result, &arm, &places, report);
+        result = held(&result, &arm, &places, report);
         let what = format!("the {} arm does not reach the place where the hand is held", side.name());
         tell_misses(&result, &arm, &places, own().map(|hold| hold.frames), &what, report);
     }
@@ -88,7 +88,7 @@ pub(super) fn hold_hands(
             places[1][frame] = Some(rows[1][frame] + off * (1.0 - share));
         }
         for (arm, places) in [left, right].iter().zip(&places) {
-            result = held(result, arm, places, report);
+            result = held(&result, arm, places, report);
         }
         for (arm, places) in [left, right].iter().zip(&places) {
             let what = "the arm does not reach the other hand";
@@ -148,13 +148,13 @@ fn trail(clip: &Clip, arm: &TwoJointLimb) -> Vec<DVec3> {
 }
 
 /// The clip with the end of an arm at its places, where it has such: by a displacement that is smooth over the whole clip.
-fn held(clip: Clip, arm: &TwoJointLimb, places: &[Option<DVec3>], report: &mut Report) -> Clip {
-    let row = trail(&clip, arm);
+fn held(clip: &Clip, arm: &TwoJointLimb, places: &[Option<DVec3>], report: &mut Report) -> Clip {
+    let row = trail(clip, arm);
     let known: Vec<Option<DVec3>> =
         places.iter().zip(&row).map(|(place, own)| place.map(|place| place - *own)).collect();
     let times: Vec<f64> = clip.grid.times.iter().collect();
     let shifts = spread_out(&known, &times, clip.duration_secs);
-    let (moved, made) = move_end(&clip, arm, &shifts, &PlantOptions::default());
+    let (moved, made) = move_end(clip, arm, &shifts, &PlantOptions::default());
     report.note_changes(&made.changes);
     moved
 }

@@ -83,8 +83,7 @@ pub(super) fn frames_of(clip: &Clip, span_secs: [f64; 2]) -> Option<(usize, usiz
     let count = clip.grid.count();
     let [first, last] = span_secs;
     let is_outside = count == 0 || last < clip.grid.time(0) || first > clip.grid.time(count - 1);
-    // Written so that a time that is no number is outside too.
-    if is_outside || !(first <= last) {
+    if is_outside || first > last || first.is_nan() || last.is_nan() {
         return None;
     }
     Some((clip.grid.frame(first).min(count - 1), clip.grid.frame(last).min(count - 1)))

@@ -6,7 +6,7 @@ use std::sync::Arc;
 use glam::{DAffine3, DVec3};
 use proptest::prelude::*;
 use turnwright::clip::{Clip, FootPart, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
-use turnwright::exchange::{self, joint_maps};
+use turnwright::exchange::{self, disk, joint_maps};
 use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
 use turnwright::retarget::{
     Contacts, Figure, FootContact, HandHold, HoldAt, JointMap, KeptLimits, MapError, MapRow, Options,
@@ -64,15 +64,15 @@ fn sway(skeleton: &Arc<Skeleton>, frames: usize, size: f64) -> Clip {
 }
 
 #[track_caller]
-fn carried(clip: &Clip, target: &Arc<Skeleton>, options: Options) -> Retargeted {
+fn carried(clip: &Clip, target: &Arc<Skeleton>, options: &Options) -> Retargeted {
     let (source, target) = (Figure::new(&clip.skeleton), Figure::new(target));
     let map = JointMap::automatic(&source, &target);
-    retarget(clip, &source, &target, &map, &options)
+    retarget(clip, &source, &target, &map, options)
         .unwrap_or_else(|error| panic!("{error}: {:?}", map.doubts))
 }
 
 fn plain(clip: &Clip, target: &Arc<Skeleton>) -> Clip {
-    carried(clip, target, Options::bare()).clip
+    carried(clip, target, &Options::bare()).clip
 }
 
 /// The largest turn in degrees and distance between two clips in the scene, joint by joint of one list.
@@ -370,14 +370,14 @@ fn captures_on_figures_they_were_not_made_for() {
             };
             let clip = open(&clip).clips[0].clone();
             let target = open(&onto).skeleton().expect("a skeleton");
-            let loose = carried(&clip, &target, Options::default()).report;
+            let loose = carried(&clip, &target, &Options::default()).report;
             // Arms and legs point exactly where the source's do.
             assert!(
                 loose.worst_direction_rad().to_degrees() < 1e-3,
                 "{capture} on {figure}: {:?}",
                 loose.directions
             );
-            let held = carried(&clip, &target, Options { plant_feet: true, ..Options::default() });
+            let held = carried(&clip, &target, &Options { plant_feet: true, ..Options::default() });
             let (Some(slide), Some(drift)) = (held.report.slide, held.report.drift) else {
                 panic!("feet were found")
             };
@@ -485,13 +485,13 @@ fn hands_are_held_at_points_and_at_each_other() {
     let clip = standing(&skeleton, &build);
     let stocky = person(&B).map_places(|p| DVec3::new(1.1 * p.x, 0.9 * p.y, p.z));
     let target = Arc::new(stocky.skeleton());
-    let loose = carried(&clip, &target, Options::default());
+    let loose = carried(&clip, &target, &Options::default());
     let hand = |side| stocky.at(Role::Hand(side));
     let [left, right] = Side::BOTH.map(hand);
     let point = joint_place(&loose.clip, left, 25) + DVec3::new(-0.1, 0.05, 0.02);
     let hold = HandHold { side: Side::Left, span_secs: [0.5, 1.0], at: HoldAt::Place(point) };
     let hands = vec![hold];
-    let held = carried(&clip, &target, Options { hands, ..Options::default() });
+    let held = carried(&clip, &target, &Options { hands, ..Options::default() });
     for frame in 15..=30 {
         assert!(joint_place(&held.clip, left, frame).distance(point) < 1e-6, "frame {frame}");
         // The hand keeps its turn, and the other one all it has.
@@ -511,14 +511,14 @@ fn hands_are_held_at_points_and_at_each_other() {
 
     // Out of reach: told, with frame and size.
     let far = HandHold { at: HoldAt::Place(point + DVec3::X * 2.0), ..hold };
-    let missed = carried(&clip, &target, Options { hands: vec![far], ..Options::default() });
+    let missed = carried(&clip, &target, &Options { hands: vec![far], ..Options::default() });
     let [own] = missed.report.missed.as_slice() else { panic!("{:?}", missed.report.missed) };
     let off = joint_place(&missed.clip, left, own.frame).distance(point + DVec3::X * 2.0);
     assert!((own.by - off).abs() < 1e-9 && own.joint == left && (15..=30).contains(&own.frame), "{own:?}");
 
     // At each other: as far apart, and in the direction, as in the source, scaled by the legs.
     let both = HandHold { side: Side::Left, span_secs: [0.5, 1.0], at: HoldAt::OtherHand };
-    let held = carried(&clip, &target, Options { hands: vec![both], ..Options::default() });
+    let held = carried(&clip, &target, &Options { hands: vec![both], ..Options::default() });
     let own = Side::BOTH.map(|side| build.at(Role::Hand(side)));
     for frame in 15..=30 {
         let apart =
@@ -562,7 +562,7 @@ fn limits_are_kept_after_all_else_and_what_they_cost_is_told() {
         limits: Some(KeptLimits::Given(Arc::clone(&limits))),
         ..Options::default()
     };
-    let made = carried(&clip, &target, options);
+    let made = carried(&clip, &target, &options);
     let own = limits.keeping(&made.clip);
     assert!(own.iter().all(|own| own.beyond_limit == 0), "{own:?}");
     let [told] = made.report.limits.as_slice() else { panic!("{:?}", made.report.limits) };
@@ -576,7 +576,7 @@ fn limits_are_kept_after_all_else_and_what_they_cost_is_told() {
 
     // The preset for adults: within it too.
     let options = Options { limits: Some(KeptLimits::Adult), ..Options::default() };
-    let made = carried(&sway(&skeleton, 40, 1.0), &target, options);
+    let made = carried(&sway(&skeleton, 40, 1.0), &target, &options);
     assert!(made.report.limits.len() > 8 && made.report.limits.iter().all(|own| own.beyond == 0));
 }
 
@@ -590,15 +590,15 @@ fn contacts_are_found_given_written_and_read() {
     let found = find_contacts(clip, &figure);
     assert!(found.len() > 4);
     let options = |feet| Options { plant_feet: true, feet, ..Options::default() };
-    let by_itself = carried(clip, &target, options(None));
-    let said = carried(clip, &target, options(Some(found.clone())));
+    let by_itself = carried(clip, &target, &options(None));
+    let said = carried(clip, &target, &options(Some(found.clone())));
     assert_eq!(by_itself, said, "the same whether found or given");
     // One fewer: that foot is free there.
-    let fewer = carried(clip, &target, options(Some(found[1..].to_vec())));
+    let fewer = carried(clip, &target, &options(Some(found[1..].to_vec())));
     assert_eq!(fewer.report.n_plants + 1, said.report.n_plants);
     assert_ne!(fewer.clip, said.clip);
     let beyond = FootContact { span_secs: [100.0, 101.0], ..found[0] };
-    let told = carried(clip, &target, options(Some(vec![beyond])));
+    let told = carried(clip, &target, &options(Some(vec![beyond])));
     assert!(
         told.report.notes.iter().any(|note| note.contains("outside the clip")),
         "{:?}",
@@ -658,7 +658,7 @@ fn any_pose_can_count_as_rest() {
 fn units_and_up_axes_are_recognised() {
     let clip = sway(&Arc::new(person(&B).skeleton()), 20, 1.0);
     let plain_target = person(&D).map_places(|p| DVec3::new(1.2 * p.x, 0.8 * p.y, p.z));
-    let expected = carried(&clip, &Arc::new(plain_target.skeleton()), Options::default());
+    let expected = carried(&clip, &Arc::new(plain_target.skeleton()), &Options::default());
     let upright: fn(DVec3) -> DVec3 = |p| p;
     let z_up: fn(DVec3) -> DVec3 = |p| DVec3::new(p.x, -p.z, p.y);
     for (factor, unit, axes) in [
@@ -668,7 +668,7 @@ fn units_and_up_axes_are_recognised() {
         (1000.0, "millimetres", upright),
     ] {
         let target = plain_target.clone().map_places(|p| axes(p) * factor);
-        let found = carried(&clip, &Arc::new(target.skeleton()), Options::default());
+        let found = carried(&clip, &Arc::new(target.skeleton()), &Options::default());
         assert!((found.report.scale - expected.report.scale * factor).abs() < 1e-9 * factor);
         let said = found.report.notes.iter().any(|note| note.contains(unit) && note.contains("metres"));
         assert!(unit.is_empty() || said, "{:?}", found.report.notes);
@@ -747,7 +747,7 @@ fn a_long_foot_does_not_dip_below_the_floor_between_plants() {
         if p.y < ankle.y && p.z > ankle.z { DVec3::new(p.x, p.y, ankle.z + 2.0 * (p.z - ankle.z)) } else { p }
     });
     let target = Arc::new(long.skeleton());
-    let made = carried(clip, &target, Options { plant_feet: true, ..Options::default() });
+    let made = carried(clip, &target, &Options { plant_feet: true, ..Options::default() });
     let leg = Figure::new(&target).roles.shape.leg_length;
     let [before, after] = made.report.deepest_dip.expect("feet were found");
     // The capture's frame 0 is a T-pose, out of which the first step jumps.
@@ -779,7 +779,7 @@ fn a_map_is_kept_for_its_two_skeletons() {
     assert!(joint_maps::kept(folder.path(), &large, &target).expect("it looks").is_some());
     let other = Figure::new(&Arc::new(person(&A).skeleton()));
     assert!(joint_maps::kept(folder.path(), &other, &target).expect("it looks").is_none());
-    std::fs::write(&path, "nonsense").expect("it writes");
+    disk::write(&path, b"nonsense").expect("it writes");
     assert!(
         joint_maps::kept(folder.path(), &source, &target)
             .expect_err("it is damaged")

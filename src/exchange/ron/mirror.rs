@@ -212,7 +212,6 @@ fn are_plain(rests: &(RestPick, RestPick)) -> bool {
     *rests == Default::default()
 }
 
-#[expect(clippy::ref_option, reason = "serde hands over a reference")]
 fn are_none(roots: &(Option<String>, Option<String>)) -> bool {
     roots.0.is_none() && roots.1.is_none()
 }
