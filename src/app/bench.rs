@@ -12,6 +12,7 @@ use crate::scene::{
 };
 use crate::snag::Snag;
 
+use super::blend_state::BlendWork;
 use super::commands::Situation;
 use super::session::Session;
 use super::view_models::{
@@ -251,6 +252,8 @@ pub struct Bench {
     pub curves: Option<FromClips<(usize, CurveView), Arc<CurveSet>>>,
     /// The way of the chosen joint's tip.
     pub tip_path: Option<FromClips<usize, Arc<Path3>>>,
+    /// What is known of the blend that is looked at.
+    pub blend: Option<BlendWork>,
     models: Models,
 }
 
@@ -449,6 +452,9 @@ impl Bench {
             search: work.map(|work| work.search).unwrap_or_default(),
             curve_view: Some(session.curve_view),
             heat_kind: Some(session.heat_kind),
+            has_blend: self.shown_blend().is_some(),
+            shows_blend_lane: session.blend.shows_lane,
+            shows_blend_clips: session.blend.shows_clips,
         }
     }
 }

@@ -21,6 +21,8 @@ pub enum Purpose {
     Relocate,
     /// To read limits from.
     Limits,
+    /// To take the second clip of a blend from.
+    Second,
 }
 
 /// What came of it.
@@ -110,6 +112,10 @@ fn dialog(purpose: Purpose, suggestion: &Path) -> Vec<PathBuf> {
         }
         Purpose::Limits => {
             let dialog = dialog.set_title("Limits from a file").add_filter("Limits", &["csv", "ron"]);
+            wait_for(dialog.pick_file()).into_iter().map(paths).collect()
+        }
+        Purpose::Second => {
+            let dialog = dialog.set_title("Open the second clip").add_filter("Clips", &clips);
             wait_for(dialog.pick_file()).into_iter().map(paths).collect()
         }
         Purpose::Save => {

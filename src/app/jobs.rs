@@ -31,6 +31,8 @@ pub enum Slot {
     Export,
     /// Finding a source anew.
     Relocate,
+    /// Comparing the two clips of a blend.
+    Blend,
 }
 
 impl Slot {
@@ -46,12 +48,13 @@ impl Slot {
             Self::TipPath => "Following the tip",
             Self::Save => "Saving",
             Self::Export => "Exporting",
+            Self::Blend => "Comparing clips",
         }
     }
 
     /// Short work that the eye waits for must not stand behind long work.
     const fn is_quick(self) -> bool {
-        matches!(self, Self::Evaluate | Self::Curves | Self::TipPath | Self::Save)
+        matches!(self, Self::Evaluate | Self::Curves | Self::TipPath | Self::Save | Self::Blend)
     }
 }
 

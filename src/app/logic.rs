@@ -1,6 +1,7 @@
 //! What happens between frames: the answers of jobs are taken in, what panels asked for is done, new work is ordered.
 
 mod answers;
+mod blend;
 mod files;
 mod limits;
 mod markers;
@@ -17,7 +18,7 @@ use super::session::Fit;
 use super::view_models::{CurveView, HeatKind, TimeChoice};
 use super::window::Window;
 use crate::raster::{Lens, StraightView};
-use crate::scene::Edit;
+use crate::scene::{Edit, LoopPass};
 
 use limits::LimitsFrom;
 
@@ -94,6 +95,7 @@ impl Window {
             }
             Command::Cancel(slot) => self.stop(slot),
             Command::Time(command) => self.run_time(command),
+            Command::Blend(command) => self.run_blend(command),
         }
     }
 
@@ -182,6 +184,13 @@ impl Window {
             A::Shortcuts => self.show_dialog(Dialog::Shortcuts),
             A::WhatsNew => self.show_dialog(Dialog::WhatsNew),
             A::About => self.show_dialog(Dialog::About),
+            A::BlendIn => self.show_dialog(Dialog::Blend),
+            A::MakeLoop => {
+                let (work, step) = (self.bench.session.work, LoopPass::default().into());
+                self.edit(&Edit::AddPass { work, step, at: usize::MAX });
+            }
+            A::BlendLane => self.bench.session.blend.shows_lane ^= true,
+            A::BlendClips => self.bench.session.blend.shows_clips ^= true,
         }
     }
 

@@ -6,12 +6,14 @@
 //! | `logic` | what happens between frames: answers of jobs, and what panels asked for |
 //! | `commands` | everything a person can ask for, in one table |
 //! | `bench`, `session` | what is open and worked out; what is looked at |
+//! | `blend_state` | the blend that is looked at |
 //! | `jobs`, `file_picker` | work on other threads |
 //! | `view_models` | what panels show, as plain data without egui |
 //! | `panels`, `widgets`, `pictures`, `theme` | how it looks |
 //! | `paint`, `runners`, `screen` | how a window comes onto the display, with a graphics driver or without |
 
 pub mod bench;
+pub mod blend_state;
 pub mod commands;
 mod file_picker;
 mod jobs;

@@ -5,9 +5,11 @@ use std::sync::Arc;
 
 use egui::{ColorImage, Context, Rect, TextureHandle, TextureOptions, pos2};
 
+use crate::blend::GroundMove;
 use crate::clip::Clip;
 use crate::raster::{Camera, Canvas, SceneView, render_into};
 
+use super::panels::DistanceKey;
 use super::view_models::{HeatMap, MapRow, Memo, Stage, TimeWindow};
 
 /// A texture and the key of what is on it.
@@ -63,6 +65,8 @@ pub(crate) struct SkeletonKey {
     pub time_bits: u64,
     /// Addresses of source, result and tip path, which stay in memory while the picture is of them.
     pub data: [usize; 3],
+    /// Faint figures: addresses of their clips, times and places.
+    pub faint: Vec<(usize, f64, GroundMove)>,
     /// Chosen joint and joint under the pointer.
     pub joints: [Option<usize>; 2],
     /// Dark, source as well, source alone, following.
@@ -131,6 +135,8 @@ pub(crate) struct Pictures {
     pub map_rows: Memo<RowsKey, Arc<Vec<MapRow>>>,
     /// A choice that is being dragged over the turn map: time, joint and place of the press.
     pub choosing: Option<(f64, Option<usize>, egui::Pos2)>,
+    /// The distance picture of a join.
+    pub distances: Picture<DistanceKey>,
     /// The rasteriser's memory.
     pub canvas: Canvas,
     /// Floor and travel of the clip on show.

@@ -6,6 +6,7 @@ use crate::clip::Clip;
 use crate::raster::Camera;
 use crate::scene::SnagMark;
 
+use super::blend_state::BlendHabits;
 use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeChoice, TimeWindow};
 
 /// The speeds that the menu steps through.
@@ -117,6 +118,8 @@ pub struct Session {
     pub order: SnagOrder,
     /// Whether the mend of the chosen snag is shown before it is accepted.
     pub looks: bool,
+    /// How the blend lane is set.
+    pub blend: BlendHabits,
 }
 
 impl Default for Session {
@@ -141,6 +144,7 @@ impl Default for Session {
             filter: SnagFilter::default(),
             order: SnagOrder::default(),
             looks: false,
+            blend: BlendHabits::default(),
         }
     }
 }
@@ -169,6 +173,7 @@ impl Session {
             shows_before: self.shows_before,
             order: self.order,
             looks: self.looks,
+            blend: self.blend.for_another_clip(),
             ..Self::default()
         };
     }

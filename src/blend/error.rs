@@ -29,6 +29,14 @@ pub enum BlendError {
         /// What was asked for.
         found_secs: f64,
     },
+    /// No part of the clip is so long.
+    #[error("expected a loop above 0 and at most {most_secs:.3} s long, the clip's length, found {found_secs} s")]
+    LoopLength {
+        /// The clip's length.
+        most_secs: f64,
+        /// What was asked for.
+        found_secs: f64,
+    },
     /// A weight out of its range.
     #[error("expected a weight {expected}, found {found}")]
     Weight {
@@ -36,6 +44,12 @@ pub enum BlendError {
         expected: &'static str,
         /// What was asked for.
         found: f64,
+    },
+    /// A weight curve without knots, or with knots out of order.
+    #[error("expected knots of a weight curve at rising seconds, found {found}")]
+    Knots {
+        /// What is wrong.
+        found: String,
     },
     /// A joint that is not there.
     #[error("expected a joint of the clip, found `{0}`")]

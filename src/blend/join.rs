@@ -3,11 +3,11 @@
 use std::sync::Arc;
 
 use crate::clip::{Clip, Times};
+use crate::skeleton::smooth_step;
 
 use super::cloud::{Cloud, DistancePicture, Landmarks};
 use super::frames::{self, Row, SLACK};
-use super::ground::{frame_above, tops};
-use super::mask::smooth_step;
+use super::ground::{GroundMove, frame_above, tops};
 use super::mix::{between, lines, said, set_down};
 use super::{BlendError, Mask};
 
@@ -29,6 +29,11 @@ impl JoinPlace {
     /// The end of `a` over the beginning of `b`.
     pub fn end_to_start(a: &Clip, overlap_secs: f64) -> Self {
         Self { first_secs: a.duration_secs - overlap_secs, second_secs: 0.0, overlap_secs }
+    }
+
+    /// The weight of the second clip at a time of the first: 0 before the overlap, 1 after it.
+    pub fn weight(&self, secs: f64) -> f64 {
+        smooth_step((secs - self.first_secs) / self.overlap_secs)
     }
 
     fn check(&self, a: &Clip, b: &Clip) -> Result<(), BlendError> {
@@ -79,8 +84,8 @@ pub fn join(a: &Clip, b: &Clip, place: JoinPlace, mask: &Mask) -> Result<Clip, B
     let own_secs: Vec<f64> = times.iter().collect();
     let other_secs: Vec<f64> = own_secs.iter().map(|secs| secs - start + place.second_secs).collect();
     let weights: Vec<f64> =
-        own_secs.iter().map(|secs| smooth_step((secs - start) / place.overlap_secs)).collect();
-    let ground = ground_between(a, b, place);
+        own_secs.iter().map(|&secs| place.weight(secs)).collect();
+    let ground = join_ground(a, b, place);
     let all_tops: Vec<usize> = tops(a);
     let joints = (0..a.joints.len()).map(|joint| {
         let factor = mask.of(joint);
@@ -115,8 +120,8 @@ pub fn join(a: &Clip, b: &Clip, place: JoinPlace, mask: &Mask) -> Result<Clip, B
     Ok(frames::clip_of(a, times.clone(), joints))
 }
 
-/// The move that sets `b` down on `a`'s ground: the best fit of both over the overlap.
-fn ground_between(a: &Clip, b: &Clip, place: JoinPlace) -> super::GroundMove {
+/// The move that sets `b` down on `a`'s ground in a join: the best fit of both over the overlap.
+pub fn join_ground(a: &Clip, b: &Clip, place: JoinPlace) -> GroundMove {
     let landmarks = Landmarks::of(a);
     let count = ((place.overlap_secs * a.grid.rate).round() as usize).max(1) + 1;
     let secs = |from: f64| -> Vec<f64> {

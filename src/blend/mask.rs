@@ -2,7 +2,7 @@
 
 use std::collections::VecDeque;
 
-use crate::skeleton::Skeleton;
+use crate::skeleton::{Skeleton, smooth_step};
 
 use super::BlendError;
 
@@ -67,10 +67,4 @@ impl Mask {
     pub fn of(&self, joint: usize) -> f64 {
         self.factors.get(joint).copied().unwrap_or(0.0)
     }
-}
-
-/// 3t² − 2t³: from 0 to 1 with no rate at either end (Kovar, Gleicher & Pighin 2002 weigh a transition so).
-pub(super) fn smooth_step(t: f64) -> f64 {
-    let t = t.clamp(0.0, 1.0);
-    t * t * (3.0 - 2.0 * t)
 }

@@ -5,7 +5,9 @@ use std::sync::Arc;
 use glam::DVec3;
 
 use crate::clip::{self, Clip, Times};
-use crate::rotor::{Rotor, geodesic_mean, slerp};
+use crate::rotor::batch::{self, Level, Streams};
+use crate::rotor::{Rotor, geodesic_mean};
+use crate::skeleton::smooth_step;
 
 use super::feet::{self, Origins};
 use super::frames::{self, Row, SLACK};
@@ -32,7 +34,7 @@ impl MixAlong {
         let after = self.knots.partition_point(|knot| knot[0] <= secs);
         match (after.checked_sub(1).map(|before| self.knots[before]), self.knots.get(after)) {
             (Some([from, a]), Some(&[to, b])) => {
-                let share = super::mask::smooth_step((secs - from) / (to - from));
+                let share = smooth_step((secs - from) / (to - from));
                 if a == b { a } else { a * (1.0 - share) + b * share }
             }
             (Some([_, only]), None) => only,
@@ -48,6 +50,13 @@ impl MixAlong {
     }
 
     fn check(&self) -> Result<(), BlendError> {
+        let is_late = |pair: &[[f64; 2]]| pair[1][0].partial_cmp(&pair[0][0]).is_none_or(|order| order.is_le());
+        if let Some(pair) = self.knots.windows(2).find(|pair| is_late(pair)) {
+            return Err(BlendError::Knots { found: format!("{} after {}", pair[1][0], pair[0][0]) });
+        }
+        if self.knots.is_empty() {
+            return Err(BlendError::Knots { found: "none".to_owned() });
+        }
         match self.knots.iter().find(|knot| !(0.0..=1.0).contains(&knot[1])) {
             Some(knot) => Err(BlendError::Weight { expected: "from 0 to 1", found: knot[1] }),
             None => Ok(()),
@@ -128,14 +137,38 @@ pub(super) fn said(a: &Clip, b: &Clip, joint: usize) -> [bool; 3] {
     ]
 }
 
-/// The short way between turns; the ends are exact.
+/// The short way between turns; the ends are exact, and so is what is equal.
 pub(super) fn between(a: &[Rotor], b: &[Rotor], share: &dyn Fn(usize) -> f64) -> Vec<Rotor> {
-    let one = |(frame, (&a, &b)): (usize, (&Rotor, &Rotor))| match share(frame) {
-        0.0 => a,
-        1.0 => b,
-        share => slerp(a, b, share).normalize(),
-    };
-    a.iter().zip(b).enumerate().map(one).collect()
+    /// Rows of a round: what is in work stays in the first cache.
+    const TILE: usize = 256;
+    let [mut from, mut to, mut out]: [Streams<f64, 4>; 3] = std::array::from_fn(|_| Streams::zeros(TILE));
+    let mut shares = [0.0; TILE];
+    let mut found = Vec::with_capacity(a.len());
+    for (tile, (a, b)) in a.chunks(TILE).zip(b.chunks(TILE)).enumerate() {
+        let rows = 0..a.len().min(b.len());
+        for (row, (a, b)) in a.iter().zip(b).enumerate() {
+            from.set(row, [a.s, a.yz, a.zx, a.xy]);
+            to.set(row, [b.s, b.yz, b.zx, b.xy]);
+            shares[row] = share(tile * TILE + row);
+        }
+        batch::slerp(
+            Level::best(),
+            from.parts().map(|part| &part[rows.clone()]),
+            to.parts().map(|part| &part[rows.clone()]),
+            &shares[rows.clone()],
+            out.parts_mut().map(|part| &mut part[rows.clone()]),
+        );
+        found.extend(rows.map(|row| {
+            let [s, yz, zx, xy] = out.get(row);
+            match shares[row] {
+                0.0 => a[row],
+                1.0 => b[row],
+                _ if a[row] == b[row] => a[row],
+                _ => Rotor::new(s, yz, zx, xy),
+            }
+        }));
+    }
+    found
 }
 
 pub(super) fn lines(a: &[DVec3], b: &[DVec3], share: &dyn Fn(usize) -> f64) -> Vec<DVec3> {
@@ -227,7 +260,7 @@ pub fn mix_aligned(a: &Clip, b: &Clip, along: &Registration, how: &AlignedMix) -
     let joints = joints.collect();
     let mixed = frames::clip_of(a, times.clone(), joints);
     let origins = Origins { first_secs: &own_secs, second_secs: &other_secs, weights: &weights };
-    let held = holds_feet.then(|| feet::held(&mixed, a, b, &origins)).flatten();
+    let held = holds_feet.then(|| feet::held(&mixed, a, b, &origins, mask)).flatten();
     Ok(held.map_or(mixed, |(held, _)| held))
 }
 

@@ -73,43 +73,44 @@ pub(super) fn warp_within(
         for column in first..end {
             let here = (column - first) * states;
             let own = distance(row, column);
+            let (before, rest) = costs.split_at_mut(here);
+            let (own_costs, own_came) = (&mut rest[..states], &mut came[here..][..states]);
             if row == 0 && column == 0 {
-                costs[here] = own;
+                own_costs[0] = own;
                 continue;
             }
             // The best state of a cell, by which every step may leave it, and the best that still may go on straight.
-            let mut put = |state: usize, (cost, origin): (f64, usize), costs: &mut [f64]| {
-                if cost + own < costs[here + state] {
-                    costs[here + state] = cost + own;
-                    came[here + state] = origin as u8;
+            let mut put = |state: usize, (cost, origin): (f64, usize)| {
+                if cost + own < own_costs[state] {
+                    own_costs[state] = cost + own;
+                    own_came[state] = origin as u8;
                 }
             };
             if row > 0 && column > 0 && (above_first..above_end).contains(&(column - 1)) {
                 let cell = &above[(column - 1 - above_first) * states..][..states];
-                put(0, best(cell, 0..states), &mut costs);
+                put(0, best(cell, 0..states));
             }
             if column > first {
-                let cell: Vec<f64> = costs[here - states..here].to_vec();
+                let cell = &before[here - states..];
                 // A first step right after anything but a step right.
-                let (cost, origin) = best(&cell, std::iter::once(0).chain(down(1)..states));
-                put(1, (cost, origin), &mut costs);
+                put(1, best(cell, std::iter::once(0).chain(down(1)..states)));
                 if is_bounded {
                     for run in 2..=runs {
-                        put(run, (cell[run - 1], run - 1), &mut costs);
+                        put(run, (cell[run - 1], run - 1));
                     }
                 } else {
-                    put(1, (cell[1], 1), &mut costs);
+                    put(1, (cell[1], 1));
                 }
             }
             if row > 0 && (above_first..above_end).contains(&column) {
                 let cell = &above[(column - above_first) * states..][..states];
-                put(down(1), best(cell, 0..=runs), &mut costs);
+                put(down(1), best(cell, 0..=runs));
                 if is_bounded {
                     for run in 2..=runs {
-                        put(down(run), (cell[down(run - 1)], down(run - 1)), &mut costs);
+                        put(down(run), (cell[down(run - 1)], down(run - 1)));
                     }
                 } else {
-                    put(down(1), (cell[down(1)], down(1)), &mut costs);
+                    put(down(1), (cell[down(1)], down(1)));
                 }
             }
         }

@@ -4,9 +4,11 @@ use std::path::PathBuf;
 
 use clap::{Args, Parser, Subcommand, ValueEnum};
 
+use crate::blend::MixAlong;
 use crate::clip::PathKind;
 use crate::exchange::OpenOptions;
 use crate::exchange::csv::{CsvOptions, NamedColumns, TimeUnit};
+use crate::scene::Closing;
 use crate::skeleton::RestChoice;
 use crate::snag::SnagKind;
 
@@ -143,15 +145,22 @@ pub(super) struct BlendArgs {
     /// B after A, overlapping so many seconds, set down where A is and as it is heading
     #[arg(long, value_name = "SECONDS")]
     pub(super) join: Option<f64>,
-    /// Between A (0) and B (1), frame by frame up to the shorter end
-    #[arg(long, value_name = "W")]
-    pub(super) mix: Option<f64>,
+    /// Between A (0) and B (1), frame by frame up to the shorter end; a weight, or a curve of weights at seconds of A, smooth
+    /// between them, such as 0:0,1.5:1
+    #[arg(long, value_name = "W|S:W,…", value_parser = parse_weights)]
+    pub(super) mix: Option<WeightCurve>,
     /// What B does beyond its first frame laid over A, so many times
     #[arg(long, value_name = "W", allow_negative_numbers = true)]
     pub(super) add: Option<f64>,
     /// With --mix: bring steps into time with each other, and B onto A's ground
     #[arg(long, requires = "mix")]
     pub(super) align: bool,
+    /// With --mix alone: hold feet where they stand, as --align and --join do; the mix is then no longer frame by frame in the legs
+    #[arg(long, requires = "mix")]
+    pub(super) plant_feet: bool,
+    /// With --align or --join: leave feet as they come out
+    #[arg(long, conflicts_with_all = ["plant_feet", "add"])]
+    pub(super) no_plant_feet: bool,
     /// Reach these joints only; all others follow A
     #[arg(long, value_name = "J,…", value_delimiter = ',')]
     pub(super) joints: Option<Vec<String>>,
@@ -261,6 +270,16 @@ pub(super) struct ConvertArgs {
     /// Keep as few keys as leave every joint within so many degrees, at all times; into glTF and CSV
     #[arg(long, value_name = "DEG")]
     pub(super) reduce: Option<f64>,
+    /// Play it so many times over, each round set down where the one before has ended
+    #[arg(long, value_name = "N")]
+    pub(super) repeat: Option<usize>,
+    /// Close the loop: let the end meet the start in pose and rate, the root's stride kept; by the size of what is missing, spread
+    /// over the whole length, or in a window near the seam
+    #[arg(long, value_name = "auto|spread|window", num_args = 0..=1, default_missing_value = "auto", require_equals = true)]
+    pub(super) close_loop: Option<CloseLoop>,
+    /// Take the part that closes on itself best, at least so many seconds long
+    #[arg(long, value_name = "SECONDS", conflicts_with_all = ["from", "to"])]
+    pub(super) find_loop: Option<f64>,
     /// Allow the input to be replaced
     #[arg(long)]
     pub(super) force: bool,
@@ -399,6 +418,48 @@ pub(super) struct PictureArgs {
     pub(super) force: bool,
     #[command(flatten)]
     pub(super) csv: CsvArgs,
+}
+
+/// How a loop is closed, as typed.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub(super) enum CloseLoop {
+    /// For each joint by the size of what is missing
+    Auto,
+    /// Over the whole length
+    Spread,
+    /// Near the seam alone
+    Window,
+}
+
+impl CloseLoop {
+    /// For the pass.
+    pub(super) const fn closing(self) -> Closing {
+        match self {
+            Self::Auto => Closing::BySize,
+            Self::Spread => Closing::Spread,
+            Self::Window => Closing::Window,
+        }
+    }
+}
+
+/// A weight over time, as typed: knots of seconds and weight.
+pub(super) type WeightCurve = MixAlong;
+
+/// One weight, or pairs of seconds and weight.
+fn parse_weights(text: &str) -> Result<WeightCurve, String> {
+    let error = || format!("expected a weight such as 0.5, or seconds and weights such as 0:0,1.5:1, found `{text}`");
+    let number = |text: &str| text.trim().parse::<f64>().ok().filter(|number| number.is_finite());
+    if let Some(weight) = number(text) {
+        return Ok(WeightCurve::constant(weight));
+    }
+    let knots: Option<Vec<[f64; 2]>> = text
+        .split(',')
+        .map(|knot| {
+            let (secs, weight) = knot.split_once(':')?;
+            Some([number(secs)?, number(weight)?])
+        })
+        .collect();
+    Ok(WeightCurve { knots: knots.ok_or_else(error)? })
 }
 
 /// Smallest and largest side of a picture, in pixels.

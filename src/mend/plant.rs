@@ -10,7 +10,7 @@ use crate::clip::{
     Slide, Times, median_place, slides,
 };
 use crate::rotor::{Bivector, Rotor, chordal_mean};
-use crate::skeleton::{EASE_FROM, EndTurn, Reach, TwoJointLimb, eased};
+use crate::skeleton::{EASE_FROM, EndTurn, Reach, TwoJointLimb, eased, smooth_step};
 use crate::snag::Plant;
 
 use super::draft::Draft;
@@ -359,7 +359,7 @@ fn smoothed(states: &[bool], reach: usize) -> Vec<f64> {
     let box_mean = |frame: isize| (-reach..=reach).map(|i| at(frame + i)).sum::<f64>() / width;
     (0..states.len())
         .map(|frame| box_mean(frame as isize))
-        .map(|share| share * share * (3.0 - 2.0 * share))
+        .map(smooth_step)
         .collect()
 }
 

@@ -1,6 +1,7 @@
 //! Takes a constant offset out of a run of keys and blends the seams.
 
 use crate::rotor::{Bivector, Rotor};
+use crate::skeleton::smooth_step;
 
 use super::draft::Draft;
 
@@ -75,7 +76,7 @@ fn close(draft: &Draft, poses: &mut [Rotor], first: usize, last: usize, seams: [
         for i in 0..reach.min(count) {
             let along = (i as f64 + 0.5) / reach as f64;
             // A smooth step from 1 to 0.
-            let weight = 1.0 - along * along * (3.0 - 2.0 * along);
+            let weight = 1.0 - smooth_step(along);
             let index = if at_start { i } else { count - 1 - i };
             poses[index] = (Rotor::from_plane_angles(turn * weight) * poses[index]).normalize();
         }

@@ -7,6 +7,7 @@ mod mirror;
 mod pose;
 mod rest;
 pub mod roles;
+mod smooth_step;
 mod transform;
 mod two_joint_limb;
 
@@ -14,5 +15,6 @@ pub use joints::{Joint, JointKind, Skeleton, SkeletonError};
 pub use mirror::Mirror;
 pub use pose::{LocalPose, WorldJoint};
 pub use rest::{NoRestChoice, RestChoice};
+pub use smooth_step::smooth_step;
 pub use transform::Transform;
 pub use two_joint_limb::{EASE_FROM, EndTurn, LimbBend, Reach, TwoJointLimb, eased};

@@ -4,7 +4,7 @@ use glam::{DAffine3, DMat3, DVec3};
 
 use crate::rotor::{Bivector, Rotor};
 
-use super::{Skeleton, Transform};
+use super::{Skeleton, Transform, smooth_step};
 
 /// From this share of its full length on a limb gives way softly, unless it is stretched further already.
 pub const EASE_FROM: f64 = 0.97;
@@ -327,8 +327,7 @@ fn bending_side(
     let by_hinge = hinge.and_then(|axis| across(to.cross(arc.apply(axis))));
     match (own, by_hinge) {
         (Some(own), Some(by_hinge)) if is_trusted && bend < SURE_BEND && aside > own_aside => {
-            let share = bend / SURE_BEND;
-            let sure = share * share * (3.0 - 2.0 * share);
+            let sure = smooth_step(bend / SURE_BEND);
             let more = aside - own_aside;
             (own * (own_aside + sure * more) + by_hinge * ((1.0 - sure) * more))
                 .try_normalize()

@@ -27,6 +27,9 @@ if [ -e "${paths[0]}" ]; then
     for file in "${paths[@]}"; do node tests/outside/validate.mjs "$file"; done
 fi
 
+echo "-- blends as scipy works them out"
+"$python" tests/outside/blend_check.py "$program" "$data"/bvh/cmu_02_01_walk.bvh "$data"/bvh/cmu_05_06_dance.bvh
+
 echo "-- every file mended and written; what is written reads back and is valid"
 for file in "$data"/gltf/*.gl* "$data"/gltf/assetgen/*.gltf; do
     name=$(basename "$file")

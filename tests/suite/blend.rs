@@ -7,8 +7,9 @@ use std::sync::Arc;
 
 use glam::DVec3;
 use turnwright::blend::{
-    self, AlignedMix, BlendError, GroundMove, JoinPlace, Mask, MixAlong, Reference, RootFrom, Side, add,
-    align, fit, join, join_distances, mix, mix_aligned, mix_many, moved, repeat, stride,
+    self, AlignedMix, BlendError, GroundMove, JoinPlace, LoopPart, Mask, MixAlong, Reference, RootFrom, Side, add,
+    align, best_loops, fit, join, join_distances, join_on_feet, mix, mix_aligned, mix_many, mix_on_feet, moved,
+    repeat, stride, with_first_again,
 };
 use turnwright::clip::{
     Clip, ContactOptions, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack, contacts, slides,
@@ -16,7 +17,9 @@ use turnwright::clip::{
 };
 use turnwright::exchange::{self, OpenOptions, ron};
 use turnwright::rotor::{Axis, Bivector, Rotor};
-use turnwright::scene::{BlendForm, BlendPass, ClipRef, ClipWork, Document, Pass, PassId, SourceRef};
+use turnwright::scene::{
+    BlendForm, BlendPass, ClipRef, ClipWork, Closing, Document, LoopPass, NoOthers, Pass, PassId, PassKind, SourceRef,
+};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use crate::support::{assert_close, largest, numbers, shared, shared_json};
@@ -448,6 +451,11 @@ fn a_scene_keeps_a_blend() {
         let step = BlendPass { other, form, joints, holds_feet: id == 1 }.into();
         document.works[0].passes.push(Pass { id: PassId(id as u64), on: true, step });
     }
+    for (id, close) in [(3, None), (4, Some(Closing::Window))] {
+        let part_secs = close.map(|_| [0.5, 1.25]);
+        let step = LoopPass { part_secs, close, rounds: 3 }.into();
+        document.works[0].passes.push(Pass { id: PassId(id), on: true, step });
+    }
     let text = ron::to_text(Path::new("/a/night.ron"), &document, &label).unwrap();
     let back = ron::from_text(Path::new("/a/night.ron"), &text).unwrap().document;
     assert_eq!(back.works[0].passes, document.works[0].passes, "{text}");
@@ -489,4 +497,196 @@ fn a_repeated_walk_walks_on() {
         }
     }
     assert_eq!(repeat(&strides, 1).unwrap(), strides);
+}
+
+/// As [`fastest_slide`], of the contacts within some seconds: elsewhere the standing height of the whole tells other contacts than in
+/// the clips by themselves.
+fn slide_within(clip: &Clip, [from, to]: [f64; 2]) -> f64 {
+    let options = ContactOptions::default();
+    let feet = standing_feet(clip, options.up);
+    let found = contacts(clip, &feet, &options);
+    let inside = |mut span: turnwright::clip::PlantedSpan| {
+        span.first_frame = span.first_frame.max(clip.grid.frame(from.max(0.0)));
+        span.last_frame = span.last_frame.min(clip.grid.frame(to));
+        (span.first_frame < span.last_frame).then_some(span)
+    };
+    let spans: Vec<_> = found.spans.iter().copied().filter_map(inside).collect();
+    largest(slides(clip, &feet, &spans, options.up).iter().map(|slide| slide.fastest)) / found.leg
+}
+
+/// Two takes of walking people, and the pairs of before: where feet stand.
+fn standing_pairs() -> Vec<(&'static str, Arc<Clip>, Arc<Clip>)> {
+    let mut all = pairs();
+    let walk = clips("data/bvh/cmu_02_01_walk.bvh").map(|clips| clips[0].clone());
+    if let Some(walk) = walk {
+        let step = walk.grid.times.at(1);
+        let part = |from: f64, to: f64| Arc::new(turnwright::clip::cut(&walk, from * step, to * step));
+        all.push(("a walk and its later part", part(1.0, 200.0), part(140.0, 343.0)));
+    }
+    all
+}
+
+#[test]
+fn planted_feet_stay_planted_in_a_join() {
+    for (name, a, b) in standing_pairs() {
+        let mask = Mask::all(&a.skeleton);
+        let overlap = (0.4 * a.duration_secs.min(b.duration_secs)).min(0.5);
+        let picture = join_distances(&a, &b, overlap, 60).unwrap();
+        let most = fastest_slide(&a).max(fastest_slide(&b));
+        for (place, _) in blend::best_places(&picture, overlap, 2)
+            .into_iter()
+            .chain([(JoinPlace::end_to_start(&a, overlap), 0.0)])
+        {
+            let plain = join(&a, &b, place, &mask).unwrap();
+            let held = join_on_feet(&a, &b, place, &mask).unwrap();
+            let near = [place.first_secs - 0.2, place.first_secs + overlap + 0.2];
+            let [before, after] = [&plain, &held].map(|clip| slide_within(clip, near));
+            println!("{name} {place:?}: slide {before:.3} held {after:.3}, clips {most:.3}");
+            assert!(after <= 1.05 * most, "{name} {place:?}: {after} leg lengths a second, in the clips {most}");
+            // Far from the overlap nothing is touched.
+            for joint in a.skeleton.listed() {
+                for (frame, secs) in plain.grid.times.iter().enumerate() {
+                    let is_far = secs < place.first_secs - 2.0 || secs > place.first_secs + overlap + 2.0;
+                    if is_far {
+                        let at = |clip: &Clip| clip.rotations_at(joint, &[secs])[0];
+                        assert_eq!(at(&plain), at(&held), "{name} {joint} {frame}");
+                    }
+                }
+            }
+        }
+    }
+}
+
+#[test]
+fn planted_feet_stay_planted_in_a_mix_frame_by_frame() {
+    for (name, a, b) in standing_pairs() {
+        let mask = Mask::all(&a.skeleton);
+        for weight in [MixAlong::constant(0.5), MixAlong { knots: vec![[0.0, 0.0], [a.duration_secs, 1.0]] }] {
+            let plain = mix(&a, &b, &weight, &mask).unwrap();
+            let held = mix_on_feet(&a, &b, &weight, &mask).unwrap();
+            let most = fastest_slide(&a).max(fastest_slide(&b));
+            let [before, after] = [&plain, &held].map(fastest_slide);
+            println!("{name} {weight:?}: slide {before:.3} held {after:.3}, clips {most:.3}");
+            assert!(after <= 1.05 * most, "{name}: {after} leg lengths a second, in the clips {most}");
+        }
+        // Without a share of the second clip nothing is held.
+        assert_eq!(mix_on_feet(&a, &b, &MixAlong::constant(0.0), &mask).unwrap(), {
+            mix(&a, &b, &MixAlong::constant(0.0), &mask).unwrap()
+        });
+        // Arms alone leave the feet alone.
+        let arms: Vec<&str> =
+            ["LeftArm", "upperarm.l"].into_iter().filter(|label| a.skeleton.find(label).is_some()).collect();
+        let mask = Mask::joints(&a.skeleton, &arms).unwrap();
+        let half = MixAlong::constant(0.5);
+        assert_eq!(mix_on_feet(&a, &b, &half, &mask).unwrap(), mix(&a, &b, &half, &mask).unwrap(), "{name}");
+    }
+}
+
+#[test]
+fn a_clip_of_another_body_is_blended_after_it_was_carried_over() {
+    let (Some(walk), Some(biped)) = (
+        clips("data/bvh/cmu_02_01_walk.bvh").map(|clips| clips[0].clone()),
+        clip("data/gltf/biped23_movement_clips.glb", "Running_A"),
+    ) else {
+        return;
+    };
+    let partner = turnwright::retarget::partner(&biped, &walk.skeleton).unwrap();
+    assert!(partner.is_carried && !partner.notes.is_empty());
+    let mask = Mask::all(&walk.skeleton);
+    let joined =
+        join_on_feet(&walk, &partner.clip, JoinPlace::end_to_start(&walk, 0.3), &mask).unwrap();
+    assert!((joined.duration_secs - (walk.duration_secs + biped.duration_secs - 0.3)).abs() < 0.02);
+    // What is alike is not carried but taken as it is.
+    let same = turnwright::retarget::partner(&walk, &walk.skeleton).unwrap();
+    assert!(Arc::ptr_eq(&same.clip, &walk) && !same.is_carried);
+}
+
+/// How far a clip's ends are apart once the stride is taken out: degrees of the worst joint, and the worst step of a rate there against
+/// the largest such step within the clip.
+fn seam_of(clip: &Clip) -> (f64, f64) {
+    let last = clip.grid.count() - 1;
+    let secs: Vec<f64> = (0..=last).map(|frame| clip.grid.time(frame)).collect();
+    let below = clip.skeleton.listed().filter(|&joint| clip.skeleton.parent_joint(joint).is_some());
+    let mut worst = (0.0, 0.0);
+    for joint in below {
+        let turns = clip.rotations_at(joint, &secs);
+        let step = |frame: usize| (turns[frame].reverse() * turns[frame + 1]).plane_angles();
+        let jump = (step(0) - step(last - 1)).length();
+        let usual = largest((1..last).map(|frame| (step(frame) - step(frame - 1)).length()));
+        worst = (
+            f64::max(worst.0, turns[0].turn_to(turns[last]).to_degrees()),
+            f64::max(worst.1, jump / usual.max(1e-3)),
+        );
+    }
+    worst
+}
+
+#[test]
+fn a_loop_pass_closes_finds_and_repeats() {
+    let Some(walk) = clips("data/bvh/cmu_02_01_walk.bvh").map(|clips| clips[0].clone()) else { return };
+    let parts = best_loops(&walk, 0.9, 5, 400).unwrap();
+    assert!(parts.windows(2).all(|pair| pair[0].distance <= pair[1].distance));
+    let LoopPart { from_secs, to_secs, distance } = parts[0];
+    // A step cycle of a walk is about 1.1 s; its ends are nearer than those of the whole clip.
+    assert!((0.9..1.6).contains(&(to_secs - from_secs)), "{parts:?}");
+    assert!(distance < 0.5 * parts.iter().map(|part| part.distance).fold(1.0, f64::max).max(distance * 2.0));
+    let of = |close, rounds| LoopPass { part_secs: Some([from_secs, to_secs]), close, rounds };
+    let made = |pass: &LoopPass| pass.apply(&walk, &NoOthers).unwrap().clip;
+    let open = made(&of(None, 1));
+    let (gap, _) = seam_of(&open);
+    for close in [Closing::BySize, Closing::Spread, Closing::Window] {
+        let closed = made(&of(Some(close), 1));
+        let (left, jump) = seam_of(&closed);
+        assert!(left < 0.01 * gap + 1e-6, "{close:?}: {gap} left {left} degrees");
+        assert!(jump < 1.6, "{close:?}: a rate steps {jump} times as far as anywhere else");
+        // The stride is kept.
+        let [own, was] = [stride(&closed).unwrap(), stride(&open).unwrap()];
+        let size = was.x.hypot(was.z);
+        assert!((own.x - was.x).hypot(own.z - was.z) < 0.05 * size, "{own:?} {was:?}");
+        let thrice = made(&of(Some(close), 3));
+        assert_eq!(thrice.grid.count(), 3 * (closed.grid.count() - 1) + 1);
+        let far = stride(&thrice).unwrap();
+        assert!((far.x.hypot(far.z) - 3.0 * size).abs() < 0.2 * size, "{far:?}, once {was:?}");
+    }
+    let error = of(None, 0).apply(&walk, &NoOthers).unwrap_err().to_string();
+    assert_eq!(error, "rounds: expected 1 to 1000, found 0");
+    let late = LoopPass { part_secs: Some([99.0, 100.0]), ..LoopPass::default() };
+    assert!(late.apply(&walk, &NoOthers).unwrap_err().to_string().contains("within the clip"));
+    assert!(best_loops(&walk, 99.0, 1, 400).unwrap_err().to_string().contains("the clip's length"));
+}
+
+#[test]
+fn a_loop_whose_first_frame_follows_its_last_does_not_stutter() {
+    // A turning root that walks round a circle, 24 frames a round, the first of the next round not among them.
+    let count = 24;
+    let angle = |frame: usize| std::f64::consts::TAU / 4.0 * frame as f64 / count as f64;
+    let turns: Vec<Rotor> = (0..count).map(|frame| Axis::Y.rotor(angle(frame))).collect();
+    let places: Vec<DVec3> =
+        (0..count).map(|frame| Axis::Y.rotor(angle(frame)).apply(DVec3::new(0.0, 1.0, -2.0))).collect();
+    let clip = one_root(&turns, &places);
+    let longer = with_first_again(&clip).unwrap();
+    assert_eq!(longer.grid.count(), count + 1);
+    assert_close!(longer.rotation(0).unwrap().keys[count], Axis::Y.rotor(angle(count)), 1e-9);
+    let next = Axis::Y.rotor(angle(count)).apply(DVec3::new(0.0, 1.0, -2.0));
+    let found = longer.joints[0].translation.as_ref().unwrap().keys[count];
+    assert_close!(found, next, 0.01);
+    let round = repeat(&longer, 4).unwrap();
+    assert_eq!(round.grid.count(), 4 * count + 1);
+    let end = round.world_at(round.duration_secs)[0];
+    assert!(end.position().distance(places[0]) < 0.2, "back where it began: {}", end.position());
+}
+
+#[test]
+fn weight_curves_are_checked() {
+    let still = one_root(&[Rotor::IDENTITY; 3], &[DVec3::ZERO; 3]);
+    let mask = Mask::all(&still.skeleton);
+    for (knots, words) in [
+        (vec![[0.0, 0.1], [0.0, 0.2]], "0 after 0"),
+        (vec![[1.0, 0.1], [0.5, 0.2]], "0.5 after 1"),
+        (vec![], "none"),
+        (vec![[0.0, 1.5]], "from 0 to 1"),
+    ] {
+        let error = mix(&still, &still, &MixAlong { knots }, &mask).unwrap_err().to_string();
+        assert!(error.contains(words), "{error}");
+    }
 }

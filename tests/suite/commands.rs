@@ -800,3 +800,65 @@ fn a_retarget_keeps_maps_contacts_limits_and_rest_poses_as_it_is_told() {
     let wrong = bench.run(&format!("{base} -o i.glb --onto-root Nose")).expect(2);
     assert!(wrong.stderr.contains("--onto-root Nose: expected a joint of"), "{}", wrong.stderr);
 }
+
+#[test]
+fn blends_take_curves_and_carry_other_bodies_over() {
+    let bench = Bench::new();
+    bench.run("blend clean-deckhand.bvh deckhand.bvh --mix 0.5:0,1:1 -o curve.bvh").expect(0);
+    let rows = |name: &str| -> Vec<String> {
+        let text = bench.text(name);
+        let (_, motion) = text.split_once("Frame Time:").unwrap();
+        motion.lines().skip(1).map(|row| row.trim().to_owned()).filter(|row| !row.is_empty()).collect()
+    };
+    let (own, made) = (rows("clean-deckhand.bvh"), rows("curve.bvh"));
+    assert_eq!(own.len(), made.len());
+    // Up to the first knot the first clip, as text.
+    assert_eq!(own[..10], made[..10]);
+    for (weights, words) in [
+        ("1:0,0.5:1", "expected knots of a weight curve at rising seconds, found 0.5 after 1"),
+        ("0:0,1:2", "from 0 to 1"),
+        ("soft", "expected a weight such as 0.5"),
+    ] {
+        let error = bench.run(&format!("blend clean-deckhand.bvh deckhand.bvh --mix {weights} -o no.bvh")).expect(2);
+        assert!(error.stderr.contains(words), "{}", error.stderr);
+    }
+    let error = bench.run("blend clean-deckhand.bvh deckhand.bvh --add 1 --plant-feet -o no.bvh").expect(2);
+    assert!(error.stderr.contains("--plant-feet"), "{}", error.stderr);
+
+    let (Some(walk), Some(biped)) =
+        (shared("data/bvh/cmu_02_01_walk.bvh"), shared("data/gltf/biped23_movement_clips.glb"))
+    else {
+        return;
+    };
+    bench.copy(&walk, "walk.bvh");
+    bench.copy(&biped, "biped.glb");
+    let run = bench.run("blend walk.bvh biped.glb#Running_A --join 0.3 -o both.bvh").expect(0);
+    assert!(run.stderr.contains("carried over"), "{}", run.stderr);
+    // A machine has no joint that a walker's could drive.
+    let error = bench.run("blend walk.bvh crane.csv --join 0.3 -o no.bvh");
+    assert!(error.code == 2 && error.stderr.contains("crane.csv"), "{} {}", error.code, error.stderr);
+}
+
+#[test]
+fn a_loop_is_found_closed_and_repeated() {
+    let bench = Bench::new();
+    let frames = |name: &str| -> usize {
+        let text = bench.text(name);
+        let line = text.lines().find(|line| line.starts_with("Frames:")).unwrap();
+        line["Frames:".len()..].trim().parse().unwrap()
+    };
+    let run = bench.run("convert clean-deckhand.bvh --find-loop 0.8 --close-loop --repeat 3 -o loop.bvh").expect(0);
+    assert!(run.stderr.contains("poses") && run.stderr.contains("apart"), "{}", run.stderr);
+    bench.run("convert clean-deckhand.bvh --find-loop 0.8 --close-loop=spread -o once.bvh").expect(0);
+    assert_eq!(frames("loop.bvh"), 3 * (frames("once.bvh") - 1) + 1);
+    bench.run("convert clean-deckhand.bvh --repeat 1 -o same.bvh").expect(0);
+    assert_eq!(bench.read("same.bvh"), bench.read("clean-deckhand.bvh"));
+    for (arguments, words) in [
+        ("--repeat 0", "--repeat: expected 1 to 1000, found 0"),
+        ("--find-loop 900", "--find-loop: expected a loop above 0 and at most"),
+        ("--find-loop 1 --from 0.5", "--from"),
+    ] {
+        let error = bench.run(&format!("convert clean-deckhand.bvh {arguments} -o no.bvh")).expect(2);
+        assert!(error.stderr.contains(words), "{}", error.stderr);
+    }
+}

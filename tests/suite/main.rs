@@ -28,6 +28,7 @@
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
 //! | `gui_start` | the real program where no window can open |
+//! | `gui_two` | two clips in the window: the blend lane, its pictures and forms, loops |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
 //! | `gui_window` | the whole window, driven by accessible labels; what is asserted is the document |
 //! | `raster` | small pictures of one subject each |
@@ -67,6 +68,8 @@ mod gui_paint;
 mod gui_screen;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
+#[cfg(feature = "gui-tests")]
+mod gui_two;
 #[cfg(feature = "gui-tests")]
 mod gui_window;
 mod hostile;

@@ -86,6 +86,10 @@ pub enum Action {
     Shortcuts,
     WhatsNew,
     About,
+    BlendIn,
+    MakeLoop,
+    BlendLane,
+    BlendClips,
 }
 
 /// The menus, from left to right.

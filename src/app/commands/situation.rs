@@ -69,4 +69,10 @@ pub struct Situation {
     pub curve_view: Option<CurveView>,
     /// What the turn map shows.
     pub heat_kind: Option<HeatKind>,
+    /// A pass blends another clip in.
+    pub has_blend: bool,
+    /// The blend lane is shown.
+    pub shows_blend_lane: bool,
+    /// The two clips of a blend are drawn as faint figures.
+    pub shows_blend_clips: bool,
 }

@@ -72,6 +72,7 @@ const ALWAYS: fn(&Situation) -> bool = |_| true;
 const DOCUMENT: fn(&Situation) -> bool = |now| now.has_document;
 const CLIP: fn(&Situation) -> bool = |now| now.has_clip;
 const JOINT: fn(&Situation) -> bool = |now| now.has_clip && now.has_joint;
+const BLEND: fn(&Situation) -> bool = |now| now.has_clip && now.has_blend;
 const SNAG: fn(&Situation) -> bool = |now| now.has_snag;
 const MARKERS: fn(&Situation) -> bool = |now| now.markers > 0;
 const SNAGS: fn(&Situation) -> bool = |now| now.snags > 0;
@@ -146,6 +147,23 @@ pub const TABLE: &[Entry] = &{
             DOCUMENT,
         )
         .group(),
+        entry(
+            E,
+            A::BlendIn,
+            "Blend in a clip…",
+            "Join, mix or layer another clip with this one",
+            Some(ctrl(Key::J)),
+            CLIP,
+        )
+        .group(),
+        entry(
+            E,
+            A::MakeLoop,
+            "Loop and repeat",
+            "A pass that lets the end meet the start and plays the clip several times over",
+            Some(ctrl(Key::R)),
+            CLIP,
+        ),
         entry(V, A::Fit, "Fit figure", "Bring the whole figure into view", Some(ctrl(Key::Num7)), CLIP),
         entry(
             V,
@@ -344,6 +362,25 @@ pub const TABLE: &[Entry] = &{
         )
         .group(),
         entry(V, A::NextJoint, "Next joint", "Choose the joint below", Some(ctrl(Key::ArrowDown)), CLIP),
+        entry(
+            V,
+            A::BlendLane,
+            "Blend lane",
+            "The two clips of a blend over time, and how much of each is taken",
+            Some(ctrl_shift(Key::J)),
+            BLEND,
+        )
+        .switch(|now| now.shows_blend_lane)
+        .group(),
+        entry(
+            V,
+            A::BlendClips,
+            "Show blended clips",
+            "The two clips of a blend as faint figures beside the result",
+            Some(ctrl_shift(Key::G)),
+            BLEND,
+        )
+        .switch(|now| now.shows_blend_clips),
         entry(V, A::Light, "Light window", "Dark on light", Some(ctrl(Key::D)), ALWAYS)
             .switch(|now| now.is_light)
             .group(),

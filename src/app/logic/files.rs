@@ -303,7 +303,7 @@ impl Window {
     /// Asks with the desktop's own dialog.
     pub(super) fn browse(&mut self, purpose: Purpose, ctx: &Context) {
         let typed = match purpose {
-            Purpose::Open | Purpose::Limits => self.usual_folder(),
+            Purpose::Open | Purpose::Limits | Purpose::Second => self.usual_folder(),
             _ => self.form.path.clone(),
         };
         let wake = ctx.clone();

@@ -3,6 +3,7 @@
 use std::sync::Arc;
 
 use super::super::bench::{Evaluated, FromClips, Searched};
+use super::super::blend_state::BlendKey;
 use super::super::jobs::Slot;
 use super::super::view_models::{CurveView, HeatKind, HeatWish, changes, curve_set, heat_map, tip_path};
 use super::super::window::Window;
@@ -25,6 +26,8 @@ pub(crate) struct Asked {
     pub heat: Option<FromClips<HeatWish, ()>>,
     /// Clips, joint and view.
     pub curves: Option<FromClips<(usize, CurveView), ()>>,
+    /// A blend.
+    pub blend: Option<BlendKey>,
     /// Clips and joint.
     pub tip_path: Option<FromClips<usize, ()>>,
 }
@@ -35,6 +38,7 @@ impl Window {
         let Some(source) = self.bench.source().cloned() else { return };
         self.order_survey(&source);
         self.order_evaluation(&source);
+        self.order_blend();
         let (Some(before), Some(result)) = (self.bench.before().cloned(), self.bench.result().cloned())
         else {
             return;

@@ -1,5 +1,8 @@
 //! The parts of the window. Each reads a [`Scope`] and asks for changes with commands.
 
+mod blend_form;
+mod blend_lane;
+mod blend_picture;
 mod change_plot;
 mod curves;
 mod dialogs;
@@ -22,6 +25,8 @@ use super::pictures::Pictures;
 use super::theme::Look;
 use super::view_models::{SnagRow, SnagState};
 
+pub(crate) use blend_lane::blend_figures;
+pub(crate) use blend_picture::DistanceKey;
 pub(crate) use dialogs::{Dialog, Form, Then, dialogs_ui};
 pub(crate) use menus::menus_ui;
 pub(crate) use messages::{Level, Message, messages_ui};
@@ -97,6 +102,14 @@ pub(crate) fn bench_ui(ui: &mut egui::Ui, scope: &mut Scope<'_>) {
             .default_size((size.y * 0.31).clamp(150.0, 520.0))
             .size_range(110.0..=(size.y * 0.6).max(111.0))
             .show(ui, |ui| held(ui, |ui| turn_map::turn_map_ui(ui, scope)));
+        if scope.now.has_blend && scope.now.shows_blend_lane {
+            egui::Panel::top("blend lane")
+                .frame(bare)
+                .resizable(true)
+                .default_size((size.y * 0.20).clamp(132.0, 230.0))
+                .size_range(110.0..=(size.y * 0.4).max(111.0))
+                .show(ui, |ui| held(ui, |ui| blend_lane::blend_lane_ui(ui, scope)));
+        }
         egui::CentralPanel::no_frame().show(ui, |ui| held(ui, |ui| curves::curves_ui(ui, scope)));
     });
 }

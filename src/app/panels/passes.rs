@@ -7,7 +7,8 @@ use super::super::theme::{INSET, Look};
 use super::super::view_models::{PassRow, pass_rows};
 use super::super::widgets::{Icon, hint, paint_icon, strip};
 use super::Scope;
-use crate::scene::Edit;
+use super::blend_form::blend_form_ui;
+use crate::scene::{Edit, PassStep};
 
 /// The panel.
 pub(crate) fn passes_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
@@ -107,6 +108,10 @@ fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut S
             });
             if let Some(amount) = row.amount {
                 amount_ui(ui, amount, row, scope);
+            }
+            let own = scope.bench.work().and_then(|work| work.pass(row.id)).map(|pass| pass.step.clone());
+            if let Some(step @ (PassStep::Blend(_) | PassStep::Loop(_))) = &own {
+                blend_form_ui(ui, row.id, step, scope);
             }
             if let Some(problem) = &row.problem {
                 ui.horizontal(|ui| {

@@ -59,6 +59,7 @@ pub(crate) fn skeleton_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         }
         camera
     };
+    let faint = super::blend_figures(scope, &result);
     let key = SkeletonKey {
         size_px,
         camera,
@@ -68,6 +69,7 @@ pub(crate) fn skeleton_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
             Arc::as_ptr(&result) as usize,
             address(tip_path.as_ref().map(|path| Arc::as_ptr(path).cast())),
         ],
+        faint: faint.iter().map(|(clip, secs, place)| (Arc::as_ptr(clip) as usize, *secs, *place)).collect(),
         joints: [session.joint, scope.pictures.hovered],
         switches: [ui.visuals().dark_mode, session.shows_before, alone, follows],
         scale: ui.pixels_per_point(),
@@ -86,6 +88,7 @@ pub(crate) fn skeleton_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         source_alone: alone,
         follows,
         tip_path: tip_path.as_deref().map(Vec::as_slice),
+        faint: &faint,
     };
     let Pictures { skeleton, figure, canvas, .. } = &mut *scope.pictures;
     let texture = skeleton.show(ui.ctx(), "skeleton view", key, |_| {

@@ -1,7 +1,10 @@
 //! The skeleton view as the rasteriser takes it: poses, floor, tip path and camera at one time.
 
+use std::sync::Arc;
+
 use glam::{DAffine3, DVec3};
 
+use crate::blend::GroundMove;
 use crate::clip::Clip;
 use crate::raster::{
     Bounds, Camera, Figure, FigureLimb, FigureStyle, Floor, Girth, Label, SceneView, Theme, TipPath,
@@ -162,6 +165,8 @@ pub struct FigureRequest<'a> {
     pub follows: bool,
     /// The way of the chosen joint's tip.
     pub tip_path: Option<&'a [DVec3]>,
+    /// Faint figures: clips at times of their own, set down elsewhere.
+    pub faint: &'a [(Arc<Clip>, f64, GroundMove)],
 }
 
 /// Seconds of a tip's way that are drawn before and after the playhead: more would be a ball of wool.
@@ -182,6 +187,13 @@ pub fn figure_view(stage: &Stage, request: &FigureRequest<'_>) -> SceneView {
         hovered: request.hovered,
         ..Figure::new(limbs_at(clip, time_secs), style)
     };
+    for (clip, secs, place) in request.faint {
+        let mut limbs = limbs_at(clip, *secs);
+        for limb in &mut limbs {
+            (limb.from, limb.to) = (place.apply(limb.from), place.apply(limb.to));
+        }
+        view.figures.push(Figure { girth: stage.girth, ..Figure::new(limbs, FigureStyle::Ghost) });
+    }
     let shown = if request.source_alone { source } else { result };
     let differs = !std::ptr::eq(source, result);
     if request.shows_before && differs && !request.source_alone {

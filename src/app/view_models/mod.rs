@@ -1,5 +1,6 @@
 //! What the panels show, as plain data: no egui types, so that deriving it can be tested without a window.
 
+mod blend;
 mod change_log;
 mod changes;
 mod curves;
@@ -17,6 +18,10 @@ mod time_choice;
 mod time_window;
 mod words;
 
+pub use blend::{
+    BlendFacts, BlendKind, LaneBars, blend_facts, held_place, knots_of, lane_bars, new_blend, weight_at, with_knot, with_knot_at,
+    without_knot,
+};
 pub use change_log::{LogBlock, log_blocks};
 pub use changes::{Changes, changes};
 pub use curves::{CurveLine, CurveSet, CurveView, curve_set};

@@ -10,6 +10,7 @@ use crate::cli::input;
 use crate::cli::output::Output;
 use crate::clip::Clip;
 use crate::exchange::{self, Format, Guard};
+use crate::retarget::{self, Partner};
 
 /// The result takes the first clip's place in its file; the file's other clips stay.
 pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError> {
@@ -26,12 +27,22 @@ pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError>
             output.note(&one.source.path, &text);
         }
     }
+    let second_path = &second.source.path;
+    let carried = |source| CliError::Retarget { path: second_path.clone(), source };
+    let Partner { clip: other, is_carried, notes } =
+        retarget::partner(second.clip(), &first.clip().skeleton).map_err(carried)?;
+    for note in &notes {
+        output.note(second_path, note);
+    }
+    if is_carried {
+        output.note(second_path, "to say yourself which joint drives which, use retarget first");
+    }
     let failed = |source| CliError::Blend {
         first: first.source.path.clone(),
-        second: second.source.path.clone(),
+        second: second_path.clone(),
         source,
     };
-    let blended = blended(args, first.clip(), second.clip()).map_err(failed)?;
+    let blended = blended(args, first.clip(), &other).map_err(failed)?;
     output.say(&format!(
         "{:.3} s and {:.3} s became {:.3} s",
         first.clip().duration_secs,
@@ -47,23 +58,30 @@ pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError>
 }
 
 fn blended(args: &BlendArgs, a: &Arc<Clip>, b: &Arc<Clip>) -> Result<Arc<Clip>, BlendError> {
-    let b = blend::fit(b, &a.skeleton)?;
     let mask = match &args.joints {
         Some(labels) => Mask::joints(&a.skeleton, labels)?,
         None => Mask::all(&a.skeleton),
     };
     let made = if let Some(overlap_secs) = args.join {
-        blend::join(a, &b, JoinPlace::end_to_start(a, overlap_secs), &mask)?
-    } else if let Some(weight) = args.add {
-        blend::add(a, &b, weight, blend::Reference::First, blend::Side::Body, &mask)?
-    } else {
-        let weight = MixAlong::constant(args.mix.unwrap_or_default());
-        if args.align {
-            let along = blend::align(a, &b)?;
-            let how = AlignedMix { weight, mask, root: RootFrom::Both, holds_feet: true };
-            blend::mix_aligned(a, &b, &along, &how)?
+        let place = JoinPlace::end_to_start(a, overlap_secs);
+        if args.no_plant_feet {
+            blend::join(a, b, place, &mask)?
         } else {
-            blend::mix(a, &b, &weight, &mask)?
+            blend::join_on_feet(a, b, place, &mask)?
+        }
+    } else if let Some(weight) = args.add {
+        blend::add(a, b, weight, blend::Reference::First, blend::Side::Body, &mask)?
+    } else {
+        let weight = args.mix.clone().unwrap_or(MixAlong::constant(0.0));
+        if args.align {
+            let along = blend::align(a, b)?;
+            let holds_feet = !args.no_plant_feet;
+            let how = AlignedMix { weight, mask, root: RootFrom::Both, holds_feet };
+            blend::mix_aligned(a, b, &along, &how)?
+        } else if args.plant_feet {
+            blend::mix_on_feet(a, b, &weight, &mask)?
+        } else {
+            blend::mix(a, b, &weight, &mask)?
         }
     };
     Ok(Arc::new(made))

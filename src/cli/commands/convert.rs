@@ -2,13 +2,15 @@
 
 use std::sync::Arc;
 
+use crate::blend;
 use crate::cli::DONE;
-use crate::cli::args::ConvertArgs;
+use crate::cli::args::{CloseLoop, ConvertArgs};
 use crate::cli::error::CliError;
 use crate::cli::input::{self, Input};
 use crate::cli::output::Output;
 use crate::clip::{self, Clip, ReduceOptions};
 use crate::exchange::{self, Format, Guard, OpenOptions};
+use crate::scene::{LoopPass, NoOthers, PassKind};
 
 /// The most frames a clip is resampled to: an hour at 1000 a second.
 const MOST_FRAMES: f64 = 3.6e6;
@@ -33,6 +35,7 @@ pub(crate) fn run(args: &ConvertArgs, output: &mut Output) -> Result<u8, CliErro
     for (index, clip) in input.results.iter().enumerate() {
         results.push(if meant(index) {
             let part = part_of(clip, args, &input, all)?;
+            let part = looped(&part, args, &input, index, output)?;
             match args.reduce {
                 Some(degrees) => reduced(&part, degrees, format, &input, index, output),
                 None => part,
@@ -93,6 +96,56 @@ fn part_of(
         }
         Some(rate) => clip::resampled(clip, rate, from, to),
     }))
+}
+
+/// On more frames than this a seam is looked for on evenly spaced times instead.
+const MOST_TIMES: usize = 1500;
+
+/// The loop that is asked for. Untouched where none is.
+fn looped(
+    clip: &Arc<Clip>,
+    args: &ConvertArgs,
+    input: &Input,
+    index: usize,
+    output: &mut Output,
+) -> Result<Arc<Clip>, CliError> {
+    if args.repeat.is_none() && args.close_loop.is_none() && args.find_loop.is_none() {
+        return Ok(clip.clone());
+    }
+    let label = input.source.clip_label(index);
+    let mut pass = LoopPass {
+        part_secs: None,
+        close: args.close_loop.map(CloseLoop::closing),
+        rounds: args.repeat.unwrap_or(1),
+    };
+    if let Some(least_secs) = args.find_loop {
+        let parts = blend::best_loops(clip, least_secs, 1, MOST_TIMES)
+            .map_err(|error| wrong_loop("--find-loop", &error, "choose a shorter one"))?;
+        if let Some(part) = parts.first() {
+            let (from, to) = (part.from_secs, part.to_secs);
+            output.say(&format!("{label}: from {from:.3} s to {to:.3} s, poses {:.4} apart", part.distance));
+            pass.part_secs = Some([from, to]);
+        }
+    }
+    let outcome =
+        pass.apply(clip, &NoOthers).map_err(|error| wrong_loop("--repeat", &error, "choose another number"))?;
+    for note in &outcome.notes {
+        output.say(&format!("{label}: {note}"));
+    }
+    Ok(Arc::new(outcome.clip))
+}
+
+/// An error that names what was expected and found itself.
+fn wrong_loop(place: &str, error: &dyn std::fmt::Display, advice: &'static str) -> CliError {
+    let text = error.to_string();
+    let (expected, found) = text.split_once(", found ").unwrap_or((&text, "none"));
+    let expected = expected.rsplit("expected ").next().unwrap_or(expected);
+    CliError::Argument {
+        place: place.to_owned(),
+        expected: expected.to_owned(),
+        found: found.to_owned(),
+        advice,
+    }
 }
 
 /// Whether keys can be reduced so.

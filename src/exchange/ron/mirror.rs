@@ -152,6 +152,22 @@ pub(super) enum Step {
         keep_seconds: Vec<f64>,
     },
     Limits(LimitsPass),
+    Loop {
+        /// First and last second of the part that is the loop; the whole clip without.
+        #[serde(default, skip_serializing_if = "Option::is_none")]
+        part: Option<(f64, f64)>,
+        /// How the seam is closed; open without.
+        #[serde(default, skip_serializing_if = "Option::is_none")]
+        close: Option<Closing>,
+        rounds: usize,
+    },
+}
+
+#[derive(Serialize, Deserialize)]
+pub(super) enum Closing {
+    BySize,
+    Spread,
+    Window,
 }
 
 /// The fields of [`Step::Retarget`].

@@ -4,8 +4,8 @@ use crate::blend::{JoinPlace, MixAlong, Reference, RootFrom, Side};
 use crate::clip::{Foot, JointPoint, Kernel, KeyEdit, Push, PushFrame, Smoothing};
 use crate::rotor::{Bivector, Rotor};
 use crate::scene::{
-    BlendForm, BlendPass, ClipRef, KeysPass, MendPass, PassStep, PushPass, ReducePass, ResamplePass, Scope,
-    SmoothPass,
+    BlendForm, BlendPass, ClipRef, Closing, KeysPass, LoopPass, MendPass, PassStep, PushPass, ReducePass, ResamplePass,
+    Scope, SmoothPass,
 };
 use crate::skeleton::TwoJointLimb;
 use crate::snag::{LoopClose, LoopForm, Plant, Remedy, Snag, SnagKind};
@@ -60,6 +60,16 @@ pub(super) fn step_from(step: mirror::Step) -> Result<PassStep, String> {
         }
         .into(),
         mirror::Step::Limits(pass) => limits_pass_from(pass)?.into(),
+        mirror::Step::Loop { part, close, rounds } => LoopPass {
+            part_secs: part.map(|(first, last)| [first, last]),
+            close: close.map(|close| match close {
+                mirror::Closing::BySize => Closing::BySize,
+                mirror::Closing::Spread => Closing::Spread,
+                mirror::Closing::Window => Closing::Window,
+            }),
+            rounds,
+        }
+        .into(),
     })
 }
 
@@ -96,6 +106,15 @@ pub(super) fn step_to(step: &PassStep, label: &dyn Fn(usize) -> String) -> mirro
             keep_seconds: pass.keep_secs.clone(),
         },
         PassStep::Limits(pass) => mirror::Step::Limits(limits_pass_to(pass, label)),
+        PassStep::Loop(pass) => mirror::Step::Loop {
+            part: pass.part_secs.map(|[first, last]| (first, last)),
+            close: pass.close.map(|close| match close {
+                Closing::BySize => mirror::Closing::BySize,
+                Closing::Spread => mirror::Closing::Spread,
+                Closing::Window => mirror::Closing::Window,
+            }),
+            rounds: pass.rounds,
+        },
     }
 }
 

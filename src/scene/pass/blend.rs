@@ -4,6 +4,7 @@ use std::sync::Arc;
 
 use crate::blend::{self, AlignedMix, BlendError, JoinPlace, Mask, MixAlong, Reference, RootFrom, Side};
 use crate::clip::Clip;
+use crate::retarget::{self, Partner};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
@@ -43,7 +44,7 @@ pub struct BlendPass {
     pub form: BlendForm,
     /// Factors for joints by number; `None` for all in full.
     pub joints: Option<Vec<(usize, f64)>>,
-    /// Whether feet that stand in the clips are held in what is mixed of both.
+    /// Whether feet that stand in the clips are held in what is mixed or joined of both.
     pub holds_feet: bool,
 }
 
@@ -77,7 +78,7 @@ impl PassKind for BlendPass {
     fn apply(&self, clip: &Arc<Clip>, others: &dyn Others) -> Result<Outcome, PassError> {
         let missing = PassError::NoSuchClip { file: self.other.source + 1, clip: self.other.clip + 1 };
         let other = others.clip(self.other).ok_or(missing)?;
-        let other = blend::fit(&other, &clip.skeleton)?;
+        let Partner { clip: other, notes, .. } = retarget::partner(&other, &clip.skeleton)?;
         let mask = match &self.joints {
             None => Mask::all(&clip.skeleton),
             Some(list) => {
@@ -90,7 +91,11 @@ impl PassKind for BlendPass {
             }
         };
         let made = match &self.form {
+            BlendForm::Join(place) if self.holds_feet => blend::join_on_feet(clip, &other, *place, &mask)?,
             BlendForm::Join(place) => blend::join(clip, &other, *place, &mask)?,
+            BlendForm::Mix { weight, is_aligned: false, .. } if self.holds_feet => {
+                blend::mix_on_feet(clip, &other, weight, &mask)?
+            }
             BlendForm::Mix { weight, is_aligned: false, .. } => blend::mix(clip, &other, weight, &mask)?,
             BlendForm::Mix { weight, root, .. } => {
                 let along = blend::align(clip, &other)?;
@@ -102,7 +107,7 @@ impl PassKind for BlendPass {
                 blend::add(clip, &other, *weight, *reference, *side, &mask)?
             }
         };
-        Ok(made.into())
+        Ok(Outcome { clip: made, notes })
     }
 
     fn joints(&self) -> Vec<usize> {

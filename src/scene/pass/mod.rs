@@ -11,6 +11,7 @@ mod push;
 mod reduce;
 mod resample;
 mod retarget;
+mod rounds;
 mod scope;
 mod smooth;
 
@@ -25,6 +26,7 @@ pub use push::PushPass;
 pub use reduce::ReducePass;
 pub use resample::ResamplePass;
 pub use retarget::RetargetPass;
+pub use rounds::{Closing, LoopPass};
 pub use scope::Scope;
 pub use smooth::SmoothPass;
 
@@ -95,6 +97,8 @@ steps! {
     Keys(KeysPass),
     /// Keeps joints within their limits.
     Limits(LimitsPass),
+    /// A loop, closed and played several times over.
+    Loop(LoopPass),
 }
 
 impl PassStep {

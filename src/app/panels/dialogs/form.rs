@@ -2,9 +2,10 @@
 
 use std::path::PathBuf;
 
-use super::super::super::view_models::Memo;
+use super::super::super::view_models::{BlendKind, Memo};
 use crate::exchange::csv::TimeUnit;
 use crate::exchange::disk;
+use crate::scene::ClipRef;
 
 /// What has been typed.
 #[derive(Debug, Default)]
@@ -19,6 +20,10 @@ pub(crate) struct Form {
     pub columns: [usize; 5],
     /// The unit of the time column; without it what the header says, else seconds.
     pub time_unit: Option<TimeUnit>,
+    /// The second clip of a blend.
+    pub second: Option<ClipRef>,
+    /// How it is to be blended in.
+    pub blend: Option<BlendKind>,
     /// What lies in the folder of the path.
     pub(super) listing: Memo<PathBuf, Result<Vec<disk::Entry>, String>>,
     /// The field has been given the keyboard.

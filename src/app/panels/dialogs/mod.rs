@@ -1,6 +1,7 @@
 //! Questions and sheets that lie over the window, one file each.
 
 mod about;
+mod blend;
 mod changes;
 mod clips;
 mod columns;
@@ -68,6 +69,10 @@ pub(crate) enum Dialog {
     WhatsNew,
     /// Version, licences, cautions.
     About,
+    /// A second clip to blend in.
+    Blend,
+    /// A file with it.
+    SecondFile,
 }
 
 /// Draws the dialog, if there is one.
@@ -102,6 +107,10 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
             Dialog::Shortcuts => shortcuts::shortcuts_sheet(ui, form, scope),
             Dialog::WhatsNew => changes::changes_sheet(ui, scope),
             Dialog::About => about::about_sheet(ui, scope),
+            Dialog::Blend => blend::blend_sheet(ui, form, scope),
+            Dialog::SecondFile => {
+                path::path_sheet(ui, "Open the second clip", "Open", Purpose::Second, form, scope);
+            }
         }
     });
     if response.should_close() {

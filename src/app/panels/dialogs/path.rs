@@ -4,7 +4,7 @@ use std::path::{Path, PathBuf};
 
 use egui::{Key, RichText, ScrollArea, TextEdit, Ui};
 
-use super::super::super::commands::{Command, TimeCommand};
+use super::super::super::commands::{BlendCommand, Command, TimeCommand};
 use super::super::super::file_picker::Purpose;
 use super::super::Scope;
 use super::form::Form;
@@ -27,6 +27,7 @@ pub(super) fn path_sheet(
     let endings: &[&str] = match purpose {
         Purpose::Save => &[".ron"],
         Purpose::Limits => &[".csv", ".ron"],
+        Purpose::Second => &CLIPS,
         _ => &ALL,
     };
     let mut meant = path_ui(ui, form, endings, 230.0, scope.look.faint);
@@ -44,6 +45,7 @@ pub(super) fn path_sheet(
         scope.out.push(match purpose {
             Purpose::Save => Command::SaveTo(path),
             Purpose::Limits => Command::Time(TimeCommand::ReadLimits(path)),
+            Purpose::Second => Command::Blend(BlendCommand::OpenFile(path)),
             _ => Command::OpenFiles(vec![path]),
         });
     }

@@ -1,0 +1,314 @@
+//! Two clips in the window: a blend made, dragged, masked, undone and saved; loops. What is asserted is the document.
+
+use std::path::PathBuf;
+
+use egui::{Key, Modifiers, Pos2};
+use egui_kittest::Harness;
+use egui_kittest::kittest::Queryable as _;
+use turnwright::app::commands::{Action, BlendCommand, Command};
+use turnwright::app::paint::CpuRenderer;
+use turnwright::app::view_models::BlendKind;
+use turnwright::app::{Screen as _, Start, Window};
+use turnwright::blend::JoinPlace;
+use turnwright::exchange::ClipAddress;
+use turnwright::scene::{BlendForm, BlendPass, ClipRef, LoopPass, PassStep};
+
+use crate::support::shared;
+
+struct Bench<'a>(Harness<'a, Option<Window>>);
+
+impl Bench<'_> {
+    fn open(path: PathBuf, clip: Option<&str>) -> Self {
+        let start = Start::Files(vec![ClipAddress { path, clip: clip.map(str::to_owned) }]);
+        let harness = Harness::builder().with_size([1440.0, 900.0]).renderer(CpuRenderer::new(2)).build_ui_state(
+            move |ui, window: &mut Option<Window>| {
+                let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
+                window.logic(ui.ctx());
+                window.ui(ui);
+            },
+            None,
+        );
+        let mut bench = Self(harness);
+        bench.run();
+        bench
+    }
+
+    fn run(&mut self) {
+        self.0.run_steps(5);
+    }
+
+    fn window(&self) -> &Window {
+        self.0.state().as_ref().expect("the window is made in the first frame")
+    }
+
+    fn ask(&mut self, command: Command) {
+        self.0.state_mut().as_mut().expect("a window").ask(command);
+        self.run();
+    }
+
+    #[track_caller]
+    fn click(&mut self, label: &str) {
+        // What lies below in a list comes into view first.
+        self.0.get_by_label(label).scroll_to_me();
+        self.run();
+        self.0.get_by_label(label).click();
+        self.run();
+    }
+
+    #[track_caller]
+    fn place(&self, beginning: &str) -> Pos2 {
+        let node = self.0.get_all_by_label_contains(beginning).next().expect("a widget with that label");
+        node.rect().center()
+    }
+
+    fn drag(&mut self, from: Pos2, to: Pos2) -> usize {
+        self.0.hover_at(from);
+        self.0.step();
+        self.0.drag_at(from);
+        self.0.step();
+        let mut previews = 0;
+        for part in 1..=4 {
+            self.0.hover_at(from + (to - from) * part as f32 / 4.0);
+            self.0.step();
+            previews += usize::from(self.window().bench().preview.is_some());
+        }
+        self.0.drop_at(to);
+        self.run();
+        previews
+    }
+
+    fn passes(&self) -> Vec<PassStep> {
+        let work = self.window().bench().work().expect("a clip");
+        work.passes.iter().map(|pass| pass.step.clone()).collect()
+    }
+
+    #[track_caller]
+    fn blend(&self) -> BlendPass {
+        match self.passes().as_slice() {
+            [.., PassStep::Blend(blend)] => blend.clone(),
+            other => panic!("expected a blend last, found {other:?}"),
+        }
+    }
+
+    #[track_caller]
+    fn place_of_join(&self) -> JoinPlace {
+        match self.blend().form {
+            BlendForm::Join(place) => place,
+            other => panic!("expected a join, found {other:?}"),
+        }
+    }
+
+    fn steps(&self) -> usize {
+        self.window().bench().project.as_ref().map_or(0, |project| project.history.steps().1)
+    }
+
+    fn undo(&mut self) {
+        self.0.key_press_modifiers(Modifiers::COMMAND, Key::Z);
+        self.run();
+    }
+
+    fn length(&self) -> f64 {
+        self.window().bench().result().map_or(0.0, |clip| clip.duration_secs)
+    }
+}
+
+fn fox() -> Option<Bench<'static>> {
+    Some(Bench::open(shared("data/gltf/Fox.glb")?, Some("Walk")))
+}
+
+const RUN: ClipRef = ClipRef { source: 0, clip: 2 };
+
+#[test]
+fn a_clip_is_joined_from_the_menu_and_its_place_is_dragged_and_clicked() {
+    let Some(mut bench) = fox() else { return };
+    let walk = bench.length();
+    bench.0.key_press_modifiers(Modifiers::COMMAND, Key::J);
+    bench.run();
+    bench.click("Second clip Run");
+    bench.click("Blend");
+    let first = bench.place_of_join();
+    let run = bench.window().bench().project.as_ref().unwrap().source_clip(2).unwrap().duration_secs;
+    assert_eq!(bench.blend().other, RUN);
+    assert!((first.first_secs + first.overlap_secs - walk).abs() < 1e-9, "{first:?}");
+    assert!((bench.length() - (walk + run - first.overlap_secs)).abs() < 0.05, "{}", bench.length());
+    assert_eq!(bench.steps(), 1);
+
+    // The bar of the second clip: earlier by some points, in one step, shown on the way.
+    let from = bench.place("Second clip begins at");
+    let previews = bench.drag(from, from - egui::vec2(60.0, 0.0));
+    assert!(previews >= 2, "{previews} frames showed it while it was dragged");
+    assert_eq!(bench.steps(), 2, "a drag is one step");
+    assert!(bench.window().bench().preview.is_none());
+    let dragged = bench.place_of_join();
+    assert!(dragged.first_secs < first.first_secs - 0.02, "{dragged:?}");
+    assert_eq!(dragged.overlap_secs, first.overlap_secs);
+    let on_frames = dragged.first_secs * 24.0;
+    assert!((on_frames - on_frames.round()).abs() < 1e-6, "{dragged:?}");
+
+    // The distance picture: a click at its middle.
+    let middle = bench.place("Distance picture");
+    bench.0.hover_at(middle);
+    bench.0.step();
+    bench.0.drag_at(middle);
+    bench.0.drop_at(middle);
+    bench.run();
+    let clicked = bench.place_of_join();
+    let expected = 0.5 * (run - clicked.overlap_secs);
+    assert!((clicked.second_secs - expected).abs() < 0.06, "{clicked:?}, expected {expected}");
+    assert_eq!(bench.steps(), 3);
+
+    // The best place is proposed and taken.
+    bench.click("Best place 1");
+    let best = bench.place_of_join();
+    let facts = bench.window().bench().blend_facts().unwrap().clone();
+    assert!((best.first_secs - facts.places[0].0.first_secs).abs() < 0.03, "{best:?}");
+    assert!(facts.places[0].1 <= facts.places.last().unwrap().1);
+    for _ in 0..4 {
+        bench.undo();
+    }
+    assert!(bench.passes().is_empty());
+    assert_eq!(bench.length(), walk);
+}
+
+#[test]
+fn a_weight_becomes_a_curve_and_its_knots_obey_pointer_and_keys() {
+    let Some(mut bench) = fox() else { return };
+    bench.ask(Command::Blend(BlendCommand::Add(RUN, BlendKind::Mix)));
+    let weight = |bench: &Bench<'_>| match bench.blend().form {
+        BlendForm::Mix { weight, .. } => weight.knots,
+        other => panic!("expected a mix, found {other:?}"),
+    };
+    assert_eq!(weight(&bench), [[0.0, 0.5]]);
+    let from = bench.place("Weight 50 %");
+    let previews = bench.drag(from, from + egui::vec2(30.0, -12.0));
+    assert!(previews >= 2);
+    let dragged = weight(&bench);
+    assert!(dragged.len() == 1 && dragged[0][0] == 0.0 && dragged[0][1] < 0.45, "{dragged:?}");
+
+    // Knots at two times; the lane's curve has them in order.
+    for secs in [0.1, 0.4] {
+        bench.ask(Command::Scrub(secs));
+        bench.click("Knot at playhead");
+    }
+    let knots = weight(&bench);
+    assert_eq!(knots.len(), 3, "{knots:?}");
+    assert!(knots.windows(2).all(|pair| pair[0][0] < pair[1][0]), "{knots:?}");
+    let last = bench.place("Weight 3 of 3");
+    bench.drag(last, last + egui::vec2(0.0, 200.0));
+    assert_eq!(weight(&bench)[2][1], 1.0, "held within its range");
+    let steps = bench.steps();
+    bench.0.get_all_by_label_contains("Weight 3 of 3").next().unwrap().focus();
+    bench.run();
+    bench.0.key_press(Key::ArrowUp);
+    bench.run();
+    assert!((weight(&bench)[2][1] - 0.95).abs() < 1e-9, "{:?}", weight(&bench));
+    bench.0.key_press(Key::Delete);
+    bench.run();
+    assert_eq!(weight(&bench).len(), 2);
+    assert_eq!(bench.steps(), steps + 2);
+
+    // In step, the result has a length between both.
+    bench.click("In step");
+    let [a, b] = [1, 2].map(|clip| {
+        bench.window().bench().project.as_ref().unwrap().source_clip(clip).unwrap().duration_secs
+    });
+    assert!(bench.length() > a.min(b) - 0.05 && bench.length() < a.max(b) + 0.05, "{}", bench.length());
+    assert!(bench.window().bench().blend_facts().unwrap().stops.is_some());
+    // The faint figures are there at every time without a panic.
+    for share in [0.0, 0.3, 1.0] {
+        let secs = share * bench.length();
+        bench.ask(Command::Scrub(secs));
+    }
+    bench.click("Keep planted feet");
+    assert!(!bench.blend().holds_feet);
+}
+
+#[test]
+fn a_layer_takes_a_limb_with_a_soft_edge() {
+    let Some(mut bench) = fox() else { return };
+    bench.ask(Command::Blend(BlendCommand::Add(RUN, BlendKind::Add)));
+    let clip = bench.window().bench().source().unwrap().clone();
+    let joint = clip.skeleton.find("b_Tail01_012").unwrap();
+    bench.ask(Command::ChooseJoint(Some(joint)));
+    bench.ask(Command::Blend(BlendCommand::SetSoft(2)));
+    bench.click("Mask: only the chosen limb");
+    let joints = bench.blend().joints.unwrap();
+    let full = joints.iter().filter(|&&(_, factor)| factor == 1.0).count();
+    let soft = joints.iter().filter(|&&(_, factor)| factor > 0.0 && factor < 1.0).count();
+    assert_eq!((full, soft), (3, 2), "{joints:?}");
+    let result = bench.window().bench().result().unwrap().clone();
+    let head = clip.skeleton.find("b_Head_05").unwrap();
+    assert!(result.same_joint(&clip, head) && !result.same_joint(&clip, joint));
+    bench.click("All joints");
+    assert_eq!(bench.blend().joints, None);
+}
+
+#[test]
+fn a_second_clip_of_another_body_comes_from_a_file_and_is_carried_over() {
+    let (Some(walk), Some(biped)) =
+        (shared("data/bvh/cmu_02_01_walk.bvh"), shared("data/gltf/biped23_movement_clips.glb"))
+    else {
+        return;
+    };
+    let mut bench = Bench::open(walk, None);
+    bench.ask(Command::Blend(BlendCommand::AskForFile(None)));
+    bench.ask(Command::Blend(BlendCommand::OpenFile(biped.clone())));
+    let document = bench.window().bench().project.as_ref().unwrap().document().clone();
+    assert_eq!((document.sources.len(), document.works.len()), (2, 12));
+    assert_eq!(document.sources[1].path, biped);
+    // The sheet asks on, with the new clip chosen.
+    bench.click("Blend");
+    assert_eq!(bench.blend().other, ClipRef { source: 1, clip: 0 });
+    let facts = bench.window().bench().blend_facts().unwrap().clone();
+    assert!(facts.is_carried);
+    let result = bench.window().bench().result().unwrap().clone();
+    assert!(result.duration_secs > facts.first.duration_secs);
+    assert!(result.has_skeleton_of(&facts.first));
+    // Both steps can be undone, and the file can come once more.
+    bench.undo();
+    bench.undo();
+    assert_eq!(bench.window().bench().project.as_ref().unwrap().document().sources.len(), 1);
+    bench.ask(Command::Blend(BlendCommand::OpenFile(biped)));
+    assert_eq!(bench.window().bench().project.as_ref().unwrap().document().works.len(), 12);
+}
+
+#[test]
+fn a_loop_finds_its_part_and_is_repeated() {
+    let Some(path) = shared("data/bvh/cmu_02_01_walk.bvh") else { return };
+    let mut bench = Bench::open(path, None);
+    let length = bench.length();
+    bench.ask(Command::Do(Action::MakeLoop));
+    let own = |bench: &Bench<'_>| match bench.passes().as_slice() {
+        [PassStep::Loop(own)] => own.clone(),
+        other => panic!("expected a loop, found {other:?}"),
+    };
+    assert_eq!(own(&bench), LoopPass::default());
+    bench.click("Find the best part");
+    let [from, to] = own(&bench).part_secs.expect("a part");
+    assert!(from < to && to - from >= 0.29 * length, "{from} {to}");
+    assert!((bench.length() - (to - from)).abs() < 0.05);
+    bench.click("spread");
+    assert_eq!(own(&bench).close, Some(turnwright::scene::Closing::Spread));
+    bench.click("Whole clip");
+    assert_eq!(own(&bench).part_secs, None);
+    bench.undo();
+    bench.undo();
+    bench.undo();
+    assert_eq!(own(&bench), LoopPass::default());
+}
+
+#[test]
+fn the_lane_can_be_hidden_and_a_blend_that_does_not_fit_says_why() {
+    let Some(mut bench) = fox() else { return };
+    assert!(bench.0.query_by_label("Blend lane").is_none(), "no lane without a blend");
+    bench.ask(Command::Blend(BlendCommand::Add(RUN, BlendKind::Join)));
+    assert!(bench.0.get_all_by_label("Blend lane").next().is_some());
+    bench.ask(Command::Do(Action::BlendLane));
+    assert!(bench.0.query_all_by_label_contains("Distance picture").next().is_none());
+    bench.ask(Command::Do(Action::BlendLane));
+    assert!(bench.0.query_all_by_label_contains("Distance picture").next().is_some());
+    // Switched off, the lane says so.
+    bench.0.get_all_by_label_contains("Pass Join").next().unwrap().click();
+    bench.run();
+    bench.0.get_by_label("This blend is switched off");
+}
