@@ -5,12 +5,11 @@ use std::sync::Arc;
 
 use egui::{ColorImage, Context, Rect, TextureHandle, TextureOptions, pos2};
 
-use crate::blend::GroundMove;
 use crate::clip::Clip;
 use crate::raster::{Camera, Canvas, SceneView, render_into};
 
 use super::panels::DistanceKey;
-use super::view_models::{HeatMap, MapRow, Memo, Stage, TimeWindow};
+use super::view_models::{FaintFigure, HeatMap, MapRow, Memo, Stage, TimeWindow};
 
 /// A texture and the key of what is on it.
 pub(crate) struct Picture<K> {
@@ -65,8 +64,8 @@ pub(crate) struct SkeletonKey {
     pub time_bits: u64,
     /// Addresses of source, result and tip path, which stay in memory while the picture is of them.
     pub data: [usize; 3],
-    /// Faint figures: addresses of their clips, times and places.
-    pub faint: Vec<(usize, f64, GroundMove)>,
+    /// Faint figures.
+    pub faint: Vec<FaintFigure>,
     /// Chosen joint and joint under the pointer.
     pub joints: [Option<usize>; 2],
     /// Dark, source as well, source alone, following.

@@ -30,7 +30,9 @@ pub enum BlendError {
         found_secs: f64,
     },
     /// No part of the clip is so long.
-    #[error("expected a loop above 0 and at most {most_secs:.3} s long, the clip's length, found {found_secs} s")]
+    #[error(
+        "expected a loop above 0 and at most {most_secs:.3} s long, the clip's length, found {found_secs} s"
+    )]
     LoopLength {
         /// The clip's length.
         most_secs: f64,

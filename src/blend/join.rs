@@ -83,8 +83,7 @@ pub fn join(a: &Clip, b: &Clip, place: JoinPlace, mask: &Mask) -> Result<Clip, B
     };
     let own_secs: Vec<f64> = times.iter().collect();
     let other_secs: Vec<f64> = own_secs.iter().map(|secs| secs - start + place.second_secs).collect();
-    let weights: Vec<f64> =
-        own_secs.iter().map(|&secs| place.weight(secs)).collect();
+    let weights: Vec<f64> = own_secs.iter().map(|&secs| place.weight(secs)).collect();
     let ground = join_ground(a, b, place);
     let all_tops: Vec<usize> = tops(a);
     let joints = (0..a.joints.len()).map(|joint| {

@@ -1,5 +1,6 @@
 //! Mixing: between two clips by a weight, frame by frame or with their steps in time; and means of many.
 
+use std::cmp::Ordering;
 use std::sync::Arc;
 
 use glam::DVec3;
@@ -50,7 +51,7 @@ impl MixAlong {
     }
 
     fn check(&self) -> Result<(), BlendError> {
-        let is_late = |pair: &[[f64; 2]]| pair[1][0].partial_cmp(&pair[0][0]).is_none_or(|order| order.is_le());
+        let is_late = |pair: &[[f64; 2]]| pair[1][0].partial_cmp(&pair[0][0]).is_none_or(Ordering::is_le);
         if let Some(pair) = self.knots.windows(2).find(|pair| is_late(pair)) {
             return Err(BlendError::Knots { found: format!("{} after {}", pair[1][0], pair[0][0]) });
         }

@@ -85,8 +85,7 @@ fn path(own: &Cloud, other: &Cloud, reach: usize) -> Option<WarpPath> {
         stride *= FINER;
     }
     let left = |frames: usize, stride: usize| (frames - 1) / stride + 1;
-    let distance =
-        |stride: usize| move |i: usize, j: usize| own.fit(i * stride, other, j * stride, reach).0;
+    let distance = |stride: usize| move |i: usize, j: usize| own.fit(i * stride, other, j * stride, reach).0;
     let band = diagonal_band(left(rows, stride), left(columns, stride), BAND, 2);
     let most = Some(MOST_STRAIGHT);
     let mut way = warp_within(&band, left(columns, stride), most, distance(stride))?;
@@ -354,7 +353,8 @@ mod tests {
         let (own, other) = (cloud(&|share| share), cloud(&bent));
         let rounds = path(&own, &other, 2).unwrap();
         let band = diagonal_band(count, count, BAND, 2);
-        let whole = warp_within(&band, count, Some(MOST_STRAIGHT), |i, j| own.fit(i, &other, j, 2).0).unwrap();
+        let whole =
+            warp_within(&band, count, Some(MOST_STRAIGHT), |i, j| own.fit(i, &other, j, 2).0).unwrap();
         assert!(rounds.total <= 1.02 * whole.total + 1e-12, "{} and {}", rounds.total, whole.total);
         let worst = rounds
             .cells

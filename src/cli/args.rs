@@ -132,6 +132,7 @@ pub(super) struct MendArgs {
 /// own limits and guarding, local safety codes and a licensed or qualified person.
 #[derive(Debug, Args)]
 #[command(group = clap::ArgGroup::new("how").required(true).args(["join", "mix", "add"]))]
+#[expect(clippy::struct_excessive_bools, reason = "switches as they are typed")]
 pub(super) struct BlendArgs {
     /// First clip
     #[arg(value_name = "A")]
@@ -447,7 +448,8 @@ pub(super) type WeightCurve = MixAlong;
 
 /// One weight, or pairs of seconds and weight.
 fn parse_weights(text: &str) -> Result<WeightCurve, String> {
-    let error = || format!("expected a weight such as 0.5, or seconds and weights such as 0:0,1.5:1, found `{text}`");
+    let error =
+        || format!("expected a weight such as 0.5, or seconds and weights such as 0:0,1.5:1, found `{text}`");
     let number = |text: &str| text.trim().parse::<f64>().ok().filter(|number| number.is_finite());
     if let Some(weight) = number(text) {
         return Ok(WeightCurve::constant(weight));

@@ -357,10 +357,7 @@ fn smoothed(states: &[bool], reach: usize) -> Vec<f64> {
     let (reach, width) = (reach as isize, (2 * reach + 1) as f64);
     let at = |frame: isize| f64::from(u8::from(states[frame.clamp(0, last) as usize]));
     let box_mean = |frame: isize| (-reach..=reach).map(|i| at(frame + i)).sum::<f64>() / width;
-    (0..states.len())
-        .map(|frame| box_mean(frame as isize))
-        .map(smooth_step)
-        .collect()
+    (0..states.len()).map(|frame| box_mean(frame as isize)).map(smooth_step).collect()
 }
 
 /// The turn of a foot about its ball that brings its end within reach of a limb's root, by the shortest way; all in the scene. None where it

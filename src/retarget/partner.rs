@@ -33,7 +33,8 @@ pub fn partner(clip: &Arc<Clip>, skeleton: &Arc<Skeleton>) -> Result<Partner, Re
     let options = Options { plant_feet: true, ..Options::bare() };
     let made = retarget(clip, &source, &target, &map, &options)?;
     let [driven, all] = made.report.driven;
-    let mut notes = vec![format!("carried over to the first clip's skeleton: {driven} of {all} joints driven")];
+    let mut notes =
+        vec![format!("carried over to the first clip's skeleton: {driven} of {all} joints driven")];
     notes.extend(map.doubts);
     notes.extend(made.report.notes);
     Ok(Partner { clip: Arc::new(made.clip), is_carried: true, notes })

@@ -15,7 +15,7 @@ pub use history::{History, Revision, Step};
 pub use library::{Library, Loaded};
 pub use marker::{Marker, MarkerChange};
 pub use pass::{
-    BlendForm, BlendPass, ClipRef, Closing, KeysPass, LimitsPass, LoopPass, MendPass, Need, NoOthers, Others, Outcome, Pass,
-    PassError, PassId, PassKind, PassStep, PushPass, ReducePass, ResamplePass, RetargetPass, Scope,
-    SmoothPass, SnagMark,
+    BlendForm, BlendPass, ClipRef, Closing, KeysPass, LimitsPass, LoopPass, MendPass, Need, NoOthers, Others,
+    Outcome, Pass, PassError, PassId, PassKind, PassStep, PushPass, ReducePass, ResamplePass, RetargetPass,
+    Scope, SmoothPass, SnagMark,
 };

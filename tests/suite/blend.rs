@@ -7,9 +7,9 @@ use std::sync::Arc;
 
 use glam::DVec3;
 use turnwright::blend::{
-    self, AlignedMix, BlendError, GroundMove, JoinPlace, LoopPart, Mask, MixAlong, Reference, RootFrom, Side, add,
-    align, best_loops, fit, join, join_distances, join_on_feet, mix, mix_aligned, mix_many, mix_on_feet, moved,
-    repeat, stride, with_first_again,
+    self, AlignedMix, BlendError, GroundMove, JoinPlace, LoopPart, Mask, MixAlong, Reference, RootFrom, Side,
+    add, align, best_loops, fit, join, join_distances, join_on_feet, mix, mix_aligned, mix_many, mix_on_feet,
+    moved, repeat, stride, with_first_again,
 };
 use turnwright::clip::{
     Clip, ContactOptions, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack, contacts, slides,
@@ -18,7 +18,8 @@ use turnwright::clip::{
 use turnwright::exchange::{self, OpenOptions, ron};
 use turnwright::rotor::{Axis, Bivector, Rotor};
 use turnwright::scene::{
-    BlendForm, BlendPass, ClipRef, ClipWork, Closing, Document, LoopPass, NoOthers, Pass, PassId, PassKind, SourceRef,
+    BlendForm, BlendPass, ClipRef, ClipWork, Closing, Document, LoopPass, NoOthers, Pass, PassId, PassKind,
+    SourceRef,
 };
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
@@ -542,7 +543,10 @@ fn planted_feet_stay_planted_in_a_join() {
             let near = [place.first_secs - 0.2, place.first_secs + overlap + 0.2];
             let [before, after] = [&plain, &held].map(|clip| slide_within(clip, near));
             println!("{name} {place:?}: slide {before:.3} held {after:.3}, clips {most:.3}");
-            assert!(after <= 1.05 * most, "{name} {place:?}: {after} leg lengths a second, in the clips {most}");
+            assert!(
+                after <= 1.05 * most,
+                "{name} {place:?}: {after} leg lengths a second, in the clips {most}"
+            );
             // Far from the overlap nothing is touched.
             for joint in a.skeleton.listed() {
                 for (frame, secs) in plain.grid.times.iter().enumerate() {
@@ -561,7 +565,8 @@ fn planted_feet_stay_planted_in_a_join() {
 fn planted_feet_stay_planted_in_a_mix_frame_by_frame() {
     for (name, a, b) in standing_pairs() {
         let mask = Mask::all(&a.skeleton);
-        for weight in [MixAlong::constant(0.5), MixAlong { knots: vec![[0.0, 0.0], [a.duration_secs, 1.0]] }] {
+        for weight in [MixAlong::constant(0.5), MixAlong { knots: vec![[0.0, 0.0], [a.duration_secs, 1.0]] }]
+        {
             let plain = mix(&a, &b, &weight, &mask).unwrap();
             let held = mix_on_feet(&a, &b, &weight, &mask).unwrap();
             let most = fastest_slide(&a).max(fastest_slide(&b));
@@ -593,8 +598,7 @@ fn a_clip_of_another_body_is_blended_after_it_was_carried_over() {
     let partner = turnwright::retarget::partner(&biped, &walk.skeleton).unwrap();
     assert!(partner.is_carried && !partner.notes.is_empty());
     let mask = Mask::all(&walk.skeleton);
-    let joined =
-        join_on_feet(&walk, &partner.clip, JoinPlace::end_to_start(&walk, 0.3), &mask).unwrap();
+    let joined = join_on_feet(&walk, &partner.clip, JoinPlace::end_to_start(&walk, 0.3), &mask).unwrap();
     assert!((joined.duration_secs - (walk.duration_secs + biped.duration_secs - 0.3)).abs() < 0.02);
     // What is alike is not carried but taken as it is.
     let same = turnwright::retarget::partner(&walk, &walk.skeleton).unwrap();

@@ -819,7 +819,8 @@ fn blends_take_curves_and_carry_other_bodies_over() {
         ("0:0,1:2", "from 0 to 1"),
         ("soft", "expected a weight such as 0.5"),
     ] {
-        let error = bench.run(&format!("blend clean-deckhand.bvh deckhand.bvh --mix {weights} -o no.bvh")).expect(2);
+        let error =
+            bench.run(&format!("blend clean-deckhand.bvh deckhand.bvh --mix {weights} -o no.bvh")).expect(2);
         assert!(error.stderr.contains(words), "{}", error.stderr);
     }
     let error = bench.run("blend clean-deckhand.bvh deckhand.bvh --add 1 --plant-feet -o no.bvh").expect(2);
@@ -847,7 +848,8 @@ fn a_loop_is_found_closed_and_repeated() {
         let line = text.lines().find(|line| line.starts_with("Frames:")).unwrap();
         line["Frames:".len()..].trim().parse().unwrap()
     };
-    let run = bench.run("convert clean-deckhand.bvh --find-loop 0.8 --close-loop --repeat 3 -o loop.bvh").expect(0);
+    let run =
+        bench.run("convert clean-deckhand.bvh --find-loop 0.8 --close-loop --repeat 3 -o loop.bvh").expect(0);
     assert!(run.stderr.contains("poses") && run.stderr.contains("apart"), "{}", run.stderr);
     bench.run("convert clean-deckhand.bvh --find-loop 0.8 --close-loop=spread -o once.bvh").expect(0);
     assert_eq!(frames("loop.bvh"), 3 * (frames("once.bvh") - 1) + 1);

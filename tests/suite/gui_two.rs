@@ -20,14 +20,15 @@ struct Bench<'a>(Harness<'a, Option<Window>>);
 impl Bench<'_> {
     fn open(path: PathBuf, clip: Option<&str>) -> Self {
         let start = Start::Files(vec![ClipAddress { path, clip: clip.map(str::to_owned) }]);
-        let harness = Harness::builder().with_size([1440.0, 900.0]).renderer(CpuRenderer::new(2)).build_ui_state(
-            move |ui, window: &mut Option<Window>| {
-                let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
-                window.logic(ui.ctx());
-                window.ui(ui);
-            },
-            None,
-        );
+        let harness =
+            Harness::builder().with_size([1440.0, 900.0]).renderer(CpuRenderer::new(2)).build_ui_state(
+                move |ui, window: &mut Option<Window>| {
+                    let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
+                    window.logic(ui.ctx());
+                    window.ui(ui);
+                },
+                None,
+            );
         let mut bench = Self(harness);
         bench.run();
         bench

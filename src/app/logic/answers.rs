@@ -8,7 +8,7 @@ use egui::Context;
 use super::super::bench::{Evaluated, FromClips, Path3, Project, Searched, SourceState, file_name};
 use super::super::file_picker::{Picked, Purpose};
 use super::super::panels::{Dialog, Form, Level, Message};
-use super::super::view_models::{CurveSet, CurveView, HeatMap, HeatWish};
+use super::super::view_models::{CurveSet, CurveView, HeatMap, HeatWish, TimeWindow};
 use super::super::window::Window;
 use super::blend::BlendAnswer;
 use super::files::{Exported, OpenedScene};
@@ -141,12 +141,17 @@ impl Window {
             }
             Answer::Evaluated { serial, work, evaluated } => {
                 let chosen = self.chosen_label();
+                let shows_all = self.shows_all_time();
                 if let Some(findings) =
                     self.project_mut(serial).and_then(|project| project.findings.get_mut(work))
                 {
                     findings.evaluated = Some(*evaluated);
                 }
                 self.follow_joint(chosen);
+                if let Some(clip) = self.bench.result().filter(|_| shows_all) {
+                    // A join or a loop is longer than its source: all of it is shown, if all was.
+                    self.bench.session.window = TimeWindow::whole(clip.duration_secs);
+                }
             }
             Answer::Heat(heat) => self.bench.heat = Some(heat),
             Answer::Curves(curves) => self.bench.curves = Some(curves),
@@ -158,6 +163,12 @@ impl Window {
             Answer::Relocated { serial, index, result } => self.take_relocated(serial, index, result),
             Answer::Blend(answer) => self.take_blend(answer),
         }
+    }
+
+    /// Whether the charts show the whole clip.
+    fn shows_all_time(&self) -> bool {
+        let length = self.bench.result().map(|clip| clip.duration_secs);
+        length.is_some_and(|length| self.bench.session.window == TimeWindow::whole(length))
     }
 
     /// The label of the chosen joint, and the clip it belongs to.

@@ -13,7 +13,7 @@ use super::super::window::Window;
 use super::answers::Answer;
 use crate::blend::{LoopPart, best_loops};
 use crate::exchange::{self, OpenOptions, Source};
-use crate::scene::{BlendForm, ClipRef, Edit, Others, PassId, PassStep, SourceRef};
+use crate::scene::{BlendForm, ClipRef, ClipWork, Edit, Others, PassId, PassStep, SourceRef};
 
 /// What a job about blends came to.
 #[derive(Debug)]
@@ -69,13 +69,15 @@ impl Window {
     }
 
     fn add_blend(&mut self, other: ClipRef, kind: BlendKind) {
-        let (Some(first), Some(project)) = (self.bench.result().cloned(), &self.bench.project) else { return };
+        let (Some(first), Some(project)) = (self.bench.result().cloned(), &self.bench.project) else {
+            return;
+        };
         let second = match project.document().work_on(other) {
             Some(work) => project.result_clip(work).cloned(),
             None => None,
         };
         let Some(second) = second else { return };
-        let (work, pass) = (self.bench.session.work, self.bench.work().map(|work| work.next_pass_id()));
+        let (work, pass) = (self.bench.session.work, self.bench.work().map(ClipWork::next_pass_id));
         let blend = new_blend(other, kind, first.duration_secs, second.duration_secs);
         if let BlendForm::Join(place) = &blend.form {
             let length = first.duration_secs + second.duration_secs - place.overlap_secs;
@@ -105,7 +107,7 @@ impl Window {
         });
     }
 
-    fn take_second(&mut self, source: Arc<Source>) {
+    fn take_second(&mut self, source: &Arc<Source>) {
         let Some(project) = &mut self.bench.project else { return };
         let document = Arc::clone(project.document());
         let known = document.sources.iter().position(|own| own.path == source.path);
@@ -119,7 +121,7 @@ impl Window {
             let clips: Vec<String> = (0..source.clips.len()).map(|clip| source.clip_label(clip)).collect();
             // What an undone step had added here is gone with it.
             project.sources.truncate(index);
-            project.sources.push(SourceState::Ready(Arc::clone(&source)));
+            project.sources.push(SourceState::Ready(Arc::clone(source)));
             project.findings.truncate(document.works.len());
             project.findings.extend(clips.iter().map(|_| Findings::default()));
             self.edit(&Edit::AddSource { source: to, clips });
@@ -156,7 +158,7 @@ impl Window {
         match answer {
             BlendAnswer::Facts { serial, work } if now == Some(serial) => self.bench.blend = Some(*work),
             BlendAnswer::FileOpened { serial, result } if now == Some(serial) => match result {
-                Ok(source) => self.take_second(source),
+                Ok(source) => self.take_second(&source),
                 Err(error) if self.dialog == Some(Dialog::SecondFile) => self.form.error = Some(error),
                 Err(error) => self.tell(Message::error(error)),
             },
@@ -171,7 +173,9 @@ impl Window {
                         self.edit(&Edit::ChangePass { work, pass, step: own.into() });
                     }
                     (Some(_), Ok(None)) => {
-                        self.tell(Message::note("No part of this clip comes back to where it began".to_owned()));
+                        self.tell(Message::note(
+                            "No part of this clip comes back to where it began".to_owned(),
+                        ));
                     }
                     (_, Err(error)) => self.tell(Message::error(error)),
                     (None, Ok(_)) => {}

@@ -9,18 +9,15 @@ use super::super::view_models::{BlendKind, held_place, knots_of, weight_at, with
 use super::Scope;
 use super::blend_lane::Lane;
 use crate::blend::{JoinPlace, Mask, Reference, RootFrom, Side};
-use crate::scene::{
-    BlendForm, BlendPass, ClipRef, Closing, Edit, LoopPass, PassId, PassStep,
-};
+use crate::scene::{BlendForm, BlendPass, ClipRef, Closing, Edit, LoopPass, PassId, PassStep};
 
 /// How a clip is called: with its file where several are open.
 pub(super) fn clip_title(scope: &Scope<'_>, clip: ClipRef) -> String {
     let Some(project) = &scope.bench.project else { return String::new() };
     let document = project.document();
-    let name = document.work_on(clip).map_or_else(
-        || format!("clip {}", clip.clip + 1),
-        |work| document.works[work].name.clone(),
-    );
+    let name = document
+        .work_on(clip)
+        .map_or_else(|| format!("clip {}", clip.clip + 1), |work| document.works[work].name.clone());
     match document.sources.get(clip.source) {
         Some(source) if document.sources.len() > 1 => format!("{}: {name}", file_name(&source.path)),
         _ => name,
@@ -106,7 +103,11 @@ fn blend_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
     ui.horizontal(|ui| {
         for other in BlendKind::ALL {
             if kind_ui(ui, other, kind == other, &scope.look) && kind != other {
-                keep(id, BlendPass { form: other.form(lengths[0], lengths[1]), ..pass.clone() }.into(), scope);
+                keep(
+                    id,
+                    BlendPass { form: other.form(lengths[0], lengths[1]), ..pass.clone() }.into(),
+                    scope,
+                );
             }
         }
     });
@@ -116,7 +117,8 @@ fn blend_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
             weight_ui(ui, id, pass, lengths[0], rate, scope);
             let mut in_step = *is_aligned;
             let response = ui.add(Checkbox::new(&mut in_step, "In step"));
-            let response = response.on_hover_text("Both clips are bent in time so that their steps fall together");
+            let response =
+                response.on_hover_text("Both clips are bent in time so that their steps fall together");
             if response.changed() {
                 keep(id, with_mix(pass, Some(in_step), None), scope);
             }
@@ -130,9 +132,11 @@ fn blend_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
             let mut changed = false;
             ui.horizontal(|ui| {
                 ui.label("beyond its");
-                for (own, words) in
-                    [(Reference::First, "first frame"), (Reference::Rest, "rest pose"), (Reference::Mean, "mean")]
-                {
+                for (own, words) in [
+                    (Reference::First, "first frame"),
+                    (Reference::Rest, "rest pose"),
+                    (Reference::Mean, "mean"),
+                ] {
                     changed |= ui.radio_value(&mut reference, own, words).changed();
                 }
             });
@@ -151,7 +155,10 @@ fn blend_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
     if kind != BlendKind::Add {
         let mut holds = pass.holds_feet;
         let response = ui.add(Checkbox::new(&mut holds, "Keep planted feet"));
-        if response.on_hover_text("A foot that stands in the clips stands at one place in the blend").changed() {
+        if response
+            .on_hover_text("A foot that stands in the clips stands at one place in the blend")
+            .changed()
+        {
             keep(id, BlendPass { holds_feet: holds, ..pass.clone() }.into(), scope);
         }
     }
@@ -353,7 +360,8 @@ fn mask_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
     let label = skeleton.label(joint).to_owned();
     ui.horizontal_wrapped(|ui| {
         let limb = || Mask::limb(skeleton, &label, soft).ok();
-        let only = ui.button(format!("Only {label} and below")).on_hover_text("The chosen joint's limb alone");
+        let only =
+            ui.button(format!("Only {label} and below")).on_hover_text("The chosen joint's limb alone");
         named(&only, Role::Button, "Mask: only the chosen limb");
         if only.clicked()
             && let Some(mask) = limb()

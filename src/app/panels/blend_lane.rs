@@ -3,25 +3,25 @@
 use std::sync::Arc;
 
 use egui::{
-    Align2, CursorIcon, EventFilter, FontId, Key, Painter, Rangef, Rect, Response, Role, Sense, Shape, Stroke,
-    StrokeKind, Ui, WidgetInfo, pos2, vec2,
+    Align2, CursorIcon, EventFilter, FontId, Key, Painter, Rangef, Rect, Response, Role, Sense, Shape,
+    Stroke, StrokeKind, Ui, WidgetInfo, pos2, vec2,
 };
 
 use super::super::commands::{Action, Command};
 use super::super::theme::{GUTTER_WIDTH, INSET, Look, TIME_MARGIN};
 use super::super::view_models::{
-    BlendFacts, BlendKind, LaneBars, held_place, knots_of, lane_bars, seconds, weight_at, with_knot, with_knot_at,
-    without_knot,
+    BlendFacts, BlendKind, FaintFigure, LaneBars, held_place, knots_of, lane_bars, seconds, weight_at,
+    with_knot, with_knot_at, without_knot,
 };
 use super::super::widgets::{TimeAxis, focus_ring, hint, playhead, read_out, scrub_and_zoom, segment, strip};
 use super::Scope;
 use super::blend_form::{clip_title, kind_ui};
 use super::blend_picture::picture_ui;
-use crate::blend::{GroundMove, JoinPlace};
+use crate::blend::JoinPlace;
 use crate::clip::Clip;
 use crate::scene::{BlendForm, BlendPass, Edit, PassId};
 
-const BAR: f32 = 20.0;
+const BAR: f32 = 19.0;
 const PIP: f32 = 5.0;
 
 /// The blend that the lane shows, and everything about it that the parts of the panel need.
@@ -44,14 +44,12 @@ impl Lane {
         let (id, pass) = scope.bench.shown_blend()?;
         let first = scope.bench.clip_before(id).or(scope.bench.source())?;
         let facts = scope.bench.blend_facts().cloned();
-        let second = match &facts {
-            Some(facts) => facts.second.duration_secs,
-            None => {
-                let project = scope.bench.project.as_ref()?;
-                let work = project.document().work_on(pass.other);
-                work.and_then(|work| project.result_clip(work)).map_or(0.0, |clip| clip.duration_secs)
-            }
+        let known = facts.as_ref().map(|facts| facts.second.duration_secs);
+        let given = || {
+            let project = scope.bench.project.as_ref()?;
+            Some(project.result_clip(project.document().work_on(pass.other)?)?.duration_secs)
         };
+        let second = known.or_else(given).unwrap_or(0.0);
         let (lengths, rate) = ([first.duration_secs, second], first.grid.rate.max(1e-6));
         Some(Self { id, pass, facts, lengths, rate })
     }
@@ -185,10 +183,10 @@ struct Rows {
 
 impl Rows {
     fn of(area: Rect) -> Self {
-        let (top, bottom) = (area.top() + 5.0, area.bottom() - 5.0);
+        let (top, bottom) = (area.top() + 4.0, area.bottom() - 4.0);
         Self {
             first: Rangef::new(top, top + BAR),
-            weights: Rangef::new(top + BAR + 9.0, bottom - BAR - 9.0),
+            weights: Rangef::new(top + BAR + 8.0, bottom - BAR - 8.0),
             second: Rangef::new(bottom - BAR, bottom),
         }
     }
@@ -240,9 +238,10 @@ fn draw_bars(
     let first = scope.bench.work().map_or_else(String::new, |work| work.name.clone());
     let carried = lane.facts.as_ref().is_some_and(|facts| facts.is_carried);
     let second = clip_title(scope, lane.pass.other) + if carried { ", carried over" } else { "" };
-    for (letter, name, secs, y, fill) in
-        [("A", first, bars.first, rows.first, look.before), ("B", second, bars.second, rows.second, look.after)]
-    {
+    for (letter, name, secs, y, fill) in [
+        ("A", first, bars.first, rows.first, look.before),
+        ("B", second, bars.second, rows.second, look.after),
+    ] {
         let bar = bar_rect(secs, y, axis);
         painter.rect(bar, 3.0, fill.gamma_multiply(0.30), Stroke::new(1.0, fill), StrokeKind::Inside);
         let visible = bar.intersect(painter.clip_rect()).shrink2(vec2(6.0, 0.0));
@@ -509,7 +508,7 @@ fn hovered(
 }
 
 /// The two clips of the blend at the time that is shown, for the skeleton view.
-pub(crate) fn blend_figures(scope: &Scope<'_>, result: &Clip) -> Vec<(Arc<Clip>, f64, GroundMove)> {
+pub(crate) fn blend_figures(scope: &Scope<'_>, result: &Clip) -> Vec<FaintFigure> {
     let blend = &scope.bench.session.blend;
     if !blend.shows_clips || !blend.shows_lane {
         return Vec::new();
@@ -523,7 +522,10 @@ pub(crate) fn blend_figures(scope: &Scope<'_>, result: &Clip) -> Vec<(Arc<Clip>,
     }
     let secs = scope.bench.session.playback.playhead_secs;
     let poses = facts.poses(&pass.form, result, secs);
-    let clips = [&facts.first, &facts.second];
-    let at = poses.into_iter().zip(clips);
-    at.filter_map(|(pose, clip)| pose.map(|(secs, place)| (Arc::clone(clip), secs, place))).collect()
+    let clips = [(&facts.first, 'A'), (&facts.second, 'B')];
+    let shown = clips.into_iter().zip(poses).filter_map(|((clip, letter), pose)| {
+        let (time_secs, place) = pose?;
+        Some(FaintFigure { clip: Arc::clone(clip), time_secs, place, letter })
+    });
+    shown.collect()
 }

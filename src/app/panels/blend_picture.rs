@@ -66,21 +66,15 @@ pub(super) fn picture_ui(ui: &mut Ui, room: Rect, lane: &Lane, scope: &mut Scope
     let point = |place: JoinPlace| {
         let share = |secs: f64, span: f64| if span > 0.0 { (secs / span) as f32 } else { 0.5 };
         bounds.min
-            + vec2(share(place.first_secs, spans[0]), share(place.second_secs, spans[1])).clamp(
-                vec2(0.0, 0.0),
-                vec2(1.0, 1.0),
-            ) * side
+            + vec2(share(place.first_secs, spans[0]), share(place.second_secs, spans[1]))
+                .clamp(vec2(0.0, 0.0), vec2(1.0, 1.0))
+                * side
     };
     for (number, (best, _)) in facts.places.iter().enumerate() {
-        let at = point(*best);
+        // Whole within the picture, also at its edge.
+        let at = bounds.shrink(6.0).clamp(point(*best));
         ui.painter().circle(at, 5.5, Color32::from_black_alpha(150), (1.0, Color32::WHITE));
-        ui.painter().text(
-            at,
-            Align2::CENTER_CENTER,
-            number + 1,
-            FontId::proportional(9.0),
-            Color32::WHITE,
-        );
+        ui.painter().text(at, Align2::CENTER_CENTER, number + 1, FontId::proportional(9.0), Color32::WHITE);
     }
     cross(ui, point(place), bounds, &look);
     focus_ring(ui, &response);

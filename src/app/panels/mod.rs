@@ -106,7 +106,7 @@ pub(crate) fn bench_ui(ui: &mut egui::Ui, scope: &mut Scope<'_>) {
             egui::Panel::top("blend lane")
                 .frame(bare)
                 .resizable(true)
-                .default_size((size.y * 0.20).clamp(132.0, 230.0))
+                .default_size((size.y * 0.20).clamp(144.0, 260.0))
                 .size_range(110.0..=(size.y * 0.4).max(111.0))
                 .show(ui, |ui| held(ui, |ui| blend_lane::blend_lane_ui(ui, scope)));
         }

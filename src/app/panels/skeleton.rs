@@ -69,7 +69,7 @@ pub(crate) fn skeleton_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
             Arc::as_ptr(&result) as usize,
             address(tip_path.as_ref().map(|path| Arc::as_ptr(path).cast())),
         ],
-        faint: faint.iter().map(|(clip, secs, place)| (Arc::as_ptr(clip) as usize, *secs, *place)).collect(),
+        faint: faint.clone(),
         joints: [session.joint, scope.pictures.hovered],
         switches: [ui.visuals().dark_mode, session.shows_before, alone, follows],
         scale: ui.pixels_per_point(),

@@ -66,16 +66,12 @@ impl BlendKind {
                 let first = (first_secs - overlap_secs).max(0.0);
                 BlendForm::Join(JoinPlace { first_secs: first, second_secs: 0.0, overlap_secs })
             }
-            Self::Mix => BlendForm::Mix {
-                weight: MixAlong::constant(0.5),
-                is_aligned: false,
-                root: RootFrom::Both,
-            },
-            Self::Add => BlendForm::Add {
-                weight: 1.0,
-                reference: blend::Reference::First,
-                side: blend::Side::Body,
-            },
+            Self::Mix => {
+                BlendForm::Mix { weight: MixAlong::constant(0.5), is_aligned: false, root: RootFrom::Both }
+            }
+            Self::Add => {
+                BlendForm::Add { weight: 1.0, reference: blend::Reference::First, side: blend::Side::Body }
+            }
         }
     }
 }
@@ -117,12 +113,11 @@ pub fn blend_facts(
     known: Option<&BlendFacts>,
 ) -> Result<BlendFacts, String> {
     let known = known.filter(|known| Arc::ptr_eq(&known.first, first) && Arc::ptr_eq(&known.given, given));
-    let (second, is_carried) = match known {
-        Some(known) => (Arc::clone(&known.second), known.is_carried),
-        None => {
-            let partner = retarget::partner(given, &first.skeleton).map_err(|error| error.to_string())?;
-            (partner.clip, partner.is_carried)
-        }
+    let (second, is_carried) = if let Some(known) = known {
+        (Arc::clone(&known.second), known.is_carried)
+    } else {
+        let partner = retarget::partner(given, &first.skeleton).map_err(|error| error.to_string())?;
+        (partner.clip, partner.is_carried)
     };
     let mut facts = BlendFacts {
         first: Arc::clone(first),

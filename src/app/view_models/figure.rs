@@ -165,8 +165,28 @@ pub struct FigureRequest<'a> {
     pub follows: bool,
     /// The way of the chosen joint's tip.
     pub tip_path: Option<&'a [DVec3]>,
-    /// Faint figures: clips at times of their own, set down elsewhere.
-    pub faint: &'a [(Arc<Clip>, f64, GroundMove)],
+    /// Faint figures beside the result.
+    pub faint: &'a [FaintFigure],
+}
+
+/// A clip at a time of its own, set down elsewhere, drawn faintly with a letter above it.
+#[derive(Clone, Debug)]
+pub struct FaintFigure {
+    /// The clip.
+    pub clip: Arc<Clip>,
+    /// When, in its own time.
+    pub time_secs: f64,
+    /// Where.
+    pub place: GroundMove,
+    /// What it is called.
+    pub letter: char,
+}
+
+impl PartialEq for FaintFigure {
+    fn eq(&self, other: &Self) -> bool {
+        Arc::ptr_eq(&self.clip, &other.clip)
+            && (self.time_secs, self.place, self.letter) == (other.time_secs, other.place, other.letter)
+    }
 }
 
 /// Seconds of a tip's way that are drawn before and after the playhead: more would be a ball of wool.
@@ -187,11 +207,13 @@ pub fn figure_view(stage: &Stage, request: &FigureRequest<'_>) -> SceneView {
         hovered: request.hovered,
         ..Figure::new(limbs_at(clip, time_secs), style)
     };
-    for (clip, secs, place) in request.faint {
-        let mut limbs = limbs_at(clip, *secs);
+    for faint in request.faint {
+        let mut limbs = limbs_at(&faint.clip, faint.time_secs);
         for limb in &mut limbs {
-            (limb.from, limb.to) = (place.apply(limb.from), place.apply(limb.to));
+            (limb.from, limb.to) = (faint.place.apply(limb.from), faint.place.apply(limb.to));
         }
+        let top = limbs.iter().map(|limb| limb.to).max_by(|a, b| a.y.total_cmp(&b.y));
+        view.labels.extend(top.map(|at| Label { at, text: faint.letter.to_string() }));
         view.figures.push(Figure { girth: stage.girth, ..Figure::new(limbs, FigureStyle::Ghost) });
     }
     let shown = if request.source_alone { source } else { result };

@@ -19,13 +19,13 @@ mod time_window;
 mod words;
 
 pub use blend::{
-    BlendFacts, BlendKind, LaneBars, blend_facts, held_place, knots_of, lane_bars, new_blend, weight_at, with_knot, with_knot_at,
-    without_knot,
+    BlendFacts, BlendKind, LaneBars, blend_facts, held_place, knots_of, lane_bars, new_blend, weight_at,
+    with_knot, with_knot_at, without_knot,
 };
 pub use change_log::{LogBlock, log_blocks};
 pub use changes::{Changes, changes};
 pub use curves::{CurveLine, CurveSet, CurveView, curve_set};
-pub use figure::{FigureRequest, Stage, bounds_at, figure_view, scene_from_joint, tip_path};
+pub use figure::{FaintFigure, FigureRequest, Stage, bounds_at, figure_view, scene_from_joint, tip_path};
 pub use heat::{HeatKind, HeatMap, HeatScale, HeatWish, heat_map};
 pub use joint_numbers::{JointNumbers, RotationNumbers, joint_numbers};
 pub use joint_tree::{TreeRow, tree_rows};

@@ -37,11 +37,8 @@ pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError>
     if is_carried {
         output.note(second_path, "to say yourself which joint drives which, use retarget first");
     }
-    let failed = |source| CliError::Blend {
-        first: first.source.path.clone(),
-        second: second_path.clone(),
-        source,
-    };
+    let failed =
+        |source| CliError::Blend { first: first.source.path.clone(), second: second_path.clone(), source };
     let blended = blended(args, first.clip(), &other).map_err(failed)?;
     output.say(&format!(
         "{:.3} s and {:.3} s became {:.3} s",

@@ -127,8 +127,9 @@ fn looped(
             pass.part_secs = Some([from, to]);
         }
     }
-    let outcome =
-        pass.apply(clip, &NoOthers).map_err(|error| wrong_loop("--repeat", &error, "choose another number"))?;
+    let outcome = pass
+        .apply(clip, &NoOthers)
+        .map_err(|error| wrong_loop("--repeat", &error, "choose another number"))?;
     for note in &outcome.notes {
         output.say(&format!("{label}: {note}"));
     }
