@@ -4,7 +4,7 @@ use std::path::PathBuf;
 
 use clap::{Args, Parser, Subcommand, ValueEnum};
 
-use crate::blend::MixAlong;
+use crate::blend::{MixAlong, Reference, Side};
 use crate::clip::PathKind;
 use crate::exchange::OpenOptions;
 use crate::exchange::csv::{CsvOptions, NamedColumns, TimeUnit};
@@ -153,11 +153,20 @@ pub(super) struct BlendArgs {
     /// What B does beyond its first frame laid over A, so many times
     #[arg(long, value_name = "W", allow_negative_numbers = true)]
     pub(super) add: Option<f64>,
+    /// With --join: overlap where the poses of both are nearest, not the end of A and the start of B
+    #[arg(long, requires = "join", conflicts_with_all = ["mix", "add"])]
+    pub(super) find_place: bool,
+    /// With --add: what the difference of B is taken from
+    #[arg(long, value_enum, value_name = "first|rest|mean", default_value_t, conflicts_with_all = ["join", "mix"])]
+    pub(super) reference: ReferenceName,
+    /// With --add: whether it is composed in the joint's own frame or in its parent's
+    #[arg(long, value_enum, value_name = "body|parent", default_value_t, conflicts_with_all = ["join", "mix"])]
+    pub(super) side: SideName,
     /// With --mix: bring steps into time with each other, and B onto A's ground
-    #[arg(long, requires = "mix")]
+    #[arg(long, requires = "mix", conflicts_with_all = ["join", "add"])]
     pub(super) align: bool,
     /// With --mix alone: hold feet where they stand, as --align and --join do; the mix is then no longer frame by frame in the legs
-    #[arg(long, requires = "mix")]
+    #[arg(long, requires = "mix", conflicts_with_all = ["join", "add"])]
     pub(super) plant_feet: bool,
     /// With --align or --join: leave feet as they come out
     #[arg(long, conflicts_with_all = ["plant_feet", "add"])]
@@ -419,6 +428,49 @@ pub(super) struct PictureArgs {
     pub(super) force: bool,
     #[command(flatten)]
     pub(super) csv: CsvArgs,
+}
+
+/// What a layer is measured from, as typed.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, ValueEnum)]
+pub(super) enum ReferenceName {
+    /// Its first frame
+    #[default]
+    First,
+    /// The skeleton's rest pose
+    Rest,
+    /// Its mean over time
+    Mean,
+}
+
+impl ReferenceName {
+    /// For the blend.
+    pub(super) const fn reference(self) -> Reference {
+        match self {
+            Self::First => Reference::First,
+            Self::Rest => Reference::Rest,
+            Self::Mean => Reference::Mean,
+        }
+    }
+}
+
+/// Where a layer is composed, as typed.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, ValueEnum)]
+pub(super) enum SideName {
+    /// In the joint's own frame
+    #[default]
+    Body,
+    /// In the parent's frame
+    Parent,
+}
+
+impl SideName {
+    /// For the blend.
+    pub(super) const fn side(self) -> Side {
+        match self {
+            Self::Body => Side::Body,
+            Self::Parent => Side::Parent,
+        }
+    }
 }
 
 /// How a loop is closed, as typed.

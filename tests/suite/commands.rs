@@ -826,6 +826,16 @@ fn blends_take_curves_and_carry_other_bodies_over() {
     let error = bench.run("blend clean-deckhand.bvh deckhand.bvh --add 1 --plant-feet -o no.bvh").expect(2);
     assert!(error.stderr.contains("--plant-feet"), "{}", error.stderr);
 
+    // A layer that was measured from its mean, and one composed in the parents' frames, are others.
+    for more in ["", "--reference mean", "--side parent"] {
+        bench.run(&format!("blend clean-deckhand.bvh deckhand.bvh --add 0.7 {more} -o add{}.bvh", more.len())).expect(0);
+    }
+    let [plain, mean, parent] = [0, 16, 13].map(|length: usize| rows(&format!("add{length}.bvh")));
+    assert!(plain != mean && plain != parent && mean != parent);
+    bench.run("blend clean-deckhand.bvh deckhand.bvh --join 0.4 --find-place -o place.bvh").expect(0);
+    let error = bench.run("blend clean-deckhand.bvh deckhand.bvh --mix 0.4 --find-place -o no.bvh").expect(2);
+    assert!(error.stderr.contains("--join"), "{}", error.stderr);
+
     let (Some(walk), Some(biped)) =
         (shared("data/bvh/cmu_02_01_walk.bvh"), shared("data/gltf/biped23_movement_clips.glb"))
     else {

@@ -4,7 +4,7 @@
 use std::sync::Arc;
 
 use crate::blend::{
-    self, Cloud, DistancePicture, GroundMove, JoinPlace, Landmarks, MixAlong, RootFrom, Stop,
+    self, Cloud, DistancePicture, GroundMove, JoinPlace, Landmarks, MixAlong, Registration, RootFrom, Stop,
 };
 use crate::clip::Clip;
 use crate::retarget;
@@ -98,6 +98,8 @@ pub struct BlendFacts {
     pub places: Vec<(JoinPlace, f64)>,
     /// How the second clip is set down in a join.
     pub ground: GroundMove,
+    /// Which times belong together; of a mix in step.
+    along: Option<Arc<Registration>>,
     /// Where each frame of a mix in step comes from.
     pub stops: Option<Vec<Stop>>,
 }
@@ -127,6 +129,7 @@ pub fn blend_facts(
         distances: None,
         places: Vec::new(),
         ground: GroundMove::default(),
+        along: known.and_then(|known| known.along.clone()),
         stops: None,
     };
     match &pass.form {
@@ -145,8 +148,12 @@ pub fn blend_facts(
             facts.ground = blend::join_ground(first, &facts.second, *place);
         }
         BlendForm::Mix { weight, is_aligned: true, .. } => {
-            let along = blend::align(first, &facts.second).map_err(|error| error.to_string())?;
+            let along = match facts.along.take() {
+                Some(along) => along,
+                None => Arc::new(blend::align(first, &facts.second).map_err(|error| error.to_string())?),
+            };
             facts.stops = Some(along.stops(weight, first.grid.rate));
+            facts.along = Some(along);
         }
         BlendForm::Mix { .. } | BlendForm::Add { .. } => {}
     }

@@ -60,14 +60,18 @@ fn blended(args: &BlendArgs, a: &Arc<Clip>, b: &Arc<Clip>) -> Result<Arc<Clip>, 
         None => Mask::all(&a.skeleton),
     };
     let made = if let Some(overlap_secs) = args.join {
-        let place = JoinPlace::end_to_start(a, overlap_secs);
+        let place = if args.find_place {
+            nearest_place(a, b, overlap_secs)?
+        } else {
+            JoinPlace::end_to_start(a, overlap_secs)
+        };
         if args.no_plant_feet {
             blend::join(a, b, place, &mask)?
         } else {
             blend::join_on_feet(a, b, place, &mask)?
         }
     } else if let Some(weight) = args.add {
-        blend::add(a, b, weight, blend::Reference::First, blend::Side::Body, &mask)?
+        blend::add(a, b, weight, args.reference.reference(), args.side.side(), &mask)?
     } else {
         let weight = args.mix.clone().unwrap_or(MixAlong::constant(0.0));
         if args.align {
@@ -82,4 +86,18 @@ fn blended(args: &BlendArgs, a: &Arc<Clip>, b: &Arc<Clip>) -> Result<Arc<Clip>, 
         }
     };
     Ok(Arc::new(made))
+}
+
+/// Where the poses of both clips are nearest over an overlap, of places that keep at least half of each clip.
+fn nearest_place(a: &Clip, b: &Clip, overlap_secs: f64) -> Result<JoinPlace, BlendError> {
+    /// Rows and columns that are looked at.
+    const CELLS: usize = 200;
+    let picture = blend::join_distances(a, b, overlap_secs, CELLS)?;
+    let places = blend::best_places(&picture, overlap_secs, CELLS * CELLS);
+    let keeps = |place: &JoinPlace| {
+        place.first_secs >= 0.5 * (a.duration_secs - overlap_secs)
+            && place.second_secs <= 0.5 * (b.duration_secs - overlap_secs)
+    };
+    let found = places.into_iter().map(|(place, _)| place).find(keeps);
+    Ok(found.unwrap_or_else(|| JoinPlace::end_to_start(a, overlap_secs)))
 }
