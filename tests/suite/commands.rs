@@ -828,7 +828,9 @@ fn blends_take_curves_and_carry_other_bodies_over() {
 
     // A layer that was measured from its mean, and one composed in the parents' frames, are others.
     for more in ["", "--reference mean", "--side parent"] {
-        bench.run(&format!("blend clean-deckhand.bvh deckhand.bvh --add 0.7 {more} -o add{}.bvh", more.len())).expect(0);
+        bench
+            .run(&format!("blend clean-deckhand.bvh deckhand.bvh --add 0.7 {more} -o add{}.bvh", more.len()))
+            .expect(0);
     }
     let [plain, mean, parent] = [0, 16, 13].map(|length: usize| rows(&format!("add{length}.bvh")));
     assert!(plain != mean && plain != parent && mean != parent);
