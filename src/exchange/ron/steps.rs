@@ -4,8 +4,8 @@ use crate::blend::{JoinPlace, MixAlong, Reference, RootFrom, Side};
 use crate::clip::{Foot, JointPoint, Kernel, KeyEdit, Push, PushFrame, Smoothing};
 use crate::rotor::{Bivector, Rotor};
 use crate::scene::{
-    BlendForm, BlendPass, ClipRef, Closing, KeysPass, LoopPass, MendPass, PassStep, PushPass, ReducePass, ResamplePass,
-    Scope, SmoothPass,
+    BlendForm, BlendPass, ClipRef, Closing, KeysPass, LoopPass, MendPass, PassStep, PushPass, ReducePass,
+    ResamplePass, Scope, SmoothPass,
 };
 use crate::skeleton::TwoJointLimb;
 use crate::snag::{LoopClose, LoopForm, Plant, Remedy, Snag, SnagKind};
