@@ -123,7 +123,7 @@ const RUN: ClipRef = ClipRef { source: 0, clip: 2 };
 fn a_clip_is_joined_from_the_menu_and_its_place_is_dragged_and_clicked() {
     let Some(mut bench) = fox() else { return };
     let walk = bench.length();
-    bench.0.key_press_modifiers(Modifiers::COMMAND, Key::J);
+    bench.0.key_press_modifiers(Modifiers::COMMAND, Key::U);
     bench.run();
     bench.click("Second clip Run");
     bench.click("Blend");

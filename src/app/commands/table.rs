@@ -152,7 +152,7 @@ pub const TABLE: &[Entry] = &{
             A::BlendIn,
             "Blend in a clip…",
             "Join, mix or layer another clip with this one",
-            Some(ctrl(Key::J)),
+            Some(ctrl(Key::U)),
             CLIP,
         )
         .group(),
@@ -367,7 +367,7 @@ pub const TABLE: &[Entry] = &{
             A::BlendLane,
             "Blend lane",
             "The two clips of a blend over time, and how much of each is taken",
-            Some(ctrl_shift(Key::J)),
+            Some(ctrl_shift(Key::U)),
             BLEND,
         )
         .switch(|now| now.shows_blend_lane)
