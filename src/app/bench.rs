@@ -14,9 +14,10 @@ use crate::snag::Snag;
 
 use super::blend_state::BlendWork;
 use super::commands::Situation;
+use super::curve_hand::CurveHand;
 use super::session::Session;
 use super::view_models::{
-    Changes, CurveSet, CurveView, HeatMap, HeatWish, Memo, SnagFilter, SnagOrder, SnagRow, SnagState,
+    Changes, CurveKey, CurveSet, HeatMap, HeatWish, Memo, SnagFilter, SnagOrder, SnagRow, SnagState,
     snag_rows, snag_states,
 };
 
@@ -246,10 +247,16 @@ pub struct Bench {
     pub session: Session,
     /// What a pass would do while one of its parameters is dragged; the document changes on letting go.
     pub preview: Option<(PassId, PassStep)>,
+    /// The passes as they would be if what is being dragged by hand were let go now.
+    pub trial: Option<Vec<Pass>>,
     /// The turn map.
     pub heat: Option<FromClips<HeatWish, Arc<HeatMap>>>,
     /// The curves of the chosen joint.
-    pub curves: Option<FromClips<(usize, CurveView), Arc<CurveSet>>>,
+    pub curves: Option<FromClips<CurveKey, Arc<CurveSet>>>,
+    /// The curves of the further chosen joints.
+    pub more_curves: Vec<FromClips<CurveKey, Arc<CurveSet>>>,
+    /// What is being done to the curves by hand.
+    pub curve_hand: CurveHand,
     /// The way of the chosen joint's tip.
     pub tip_path: Option<FromClips<usize, Arc<Path3>>>,
     /// What is known of the blend that is looked at.
@@ -298,6 +305,28 @@ impl Bench {
         self.project.as_ref()?.result_clip(self.session.work)
     }
 
+    /// What the curves of a joint hang on; limits are of the source's joints, and hold where the result has the same.
+    pub fn curve_key(&self, joint: usize) -> CurveKey {
+        let limits = self.limits().map(|limits| limits.get(joint).copied());
+        CurveKey { joint, view: self.session.curve_view, limit: limits.flatten() }
+    }
+
+    /// The limits of the joints on show.
+    pub fn limits(&self) -> Option<&Arc<Limits>> {
+        let (source, result) = (self.source()?, self.result()?);
+        self.work()?.limits.as_ref().filter(|_| source.has_skeleton_of(result))
+    }
+
+    /// The curves of all chosen joints as far as they are sampled in this view, the chosen joint's first.
+    pub fn curve_sets(&self) -> Vec<Arc<CurveSet>> {
+        let known = || self.curves.iter().chain(&self.more_curves);
+        let of_joint = |joint: usize| {
+            let wanted = self.curve_key(joint);
+            known().find(|curves| curves.parameters == wanted).map(|curves| Arc::clone(&curves.value))
+        };
+        self.session.joints().into_iter().filter_map(of_joint).collect()
+    }
+
     /// The clip that the result is compared with: the source, unless a pass has carried it to another skeleton. Joint numbers
     /// of the two mean the same joints.
     pub fn before(&self) -> Option<&Arc<Clip>> {
@@ -332,6 +361,9 @@ impl Bench {
 
     /// The passes to run: those of the document, with the parameters that are being dragged.
     pub fn passes(&self) -> Vec<Pass> {
+        if let Some(trial) = &self.trial {
+            return trial.clone();
+        }
         let mut passes = self.work().map(|work| work.passes.clone()).unwrap_or_default();
         if let Some(more) = self.looked_at() {
             passes = more;
@@ -355,7 +387,7 @@ impl Bench {
 
     /// Whether what is shown is not what the document says: a parameter is dragged, or a mend is looked at.
     pub fn is_trying(&self) -> bool {
-        self.preview.is_some() || self.looked_at().is_some()
+        self.preview.is_some() || self.trial.is_some() || self.looked_at().is_some()
     }
 
     /// Open snags that may be mended unasked.
@@ -451,6 +483,10 @@ impl Bench {
             limits: work.and_then(|work| work.limits.as_ref()).map(|limits| limits.title.clone()),
             search: work.map(|work| work.search).unwrap_or_default(),
             curve_view: Some(session.curve_view),
+            chosen_keys: session.curves.keys.len(),
+            has_segment: session.curves.segment.is_some(),
+            can_paste: self.curve_hand.can_paste(self.result()),
+            snaps_to_frames: session.curves.snaps_to_frames,
             heat_kind: Some(session.heat_kind),
             has_blend: self.shown_blend().is_some(),
             shows_blend_lane: session.blend.shows_lane,

@@ -2,6 +2,7 @@
 
 mod answers;
 mod blend;
+mod curves;
 mod files;
 mod limits;
 mod markers;
@@ -12,7 +13,7 @@ mod time;
 
 use egui::Context;
 
-use super::commands::{Action, Command};
+use super::commands::{Action, Command, CurveAction};
 use super::panels::{Dialog, Form, Message, Then};
 use super::session::Fit;
 use super::view_models::{CurveView, HeatKind, TimeChoice};
@@ -45,6 +46,11 @@ impl Window {
             Command::Edit(edit) => self.edit(&edit),
             Command::ShowClip(work) => self.show_clip(work),
             Command::ChooseJoint(joint) => self.choose_joint(joint),
+            Command::ChooseAlso(joint) => self.choose_also(joint),
+            Command::Curve(command) => {
+                self.run_curve(command);
+                ctx.request_repaint();
+            }
             Command::ChooseSnag(index) => self.go_to_snag(index),
             Command::Scrub(secs) => self.scrub(secs),
             Command::ShowTime(window) => self.bench.session.window = window,
@@ -164,6 +170,12 @@ impl Window {
             A::LearnLimits => self.work_out_limits(LimitsFrom::Clip),
             A::LimitsFile => self.ask_for_limits(),
             A::IsLoop | A::FindSlides => self.switch_search(action == A::IsLoop),
+            A::Curve(action) => {
+                if matches!(action, CurveAction::Copy | CurveAction::Cut) {
+                    ctx.copy_text(self.copied_text());
+                }
+                self.act_on_curves(action);
+            }
             A::Play => self.play_or_pause(),
             A::StepBack | A::StepForward => self.step_frame(action == A::StepForward),
             A::PreviousKey | A::NextKey => self.step_key(action == A::NextKey),
@@ -218,6 +230,8 @@ impl Window {
     /// Changes the document.
     pub(super) fn edit(&mut self, edit: &Edit) {
         self.bench.preview = None;
+        self.bench.trial = None;
+        self.bench.curve_hand.let_go();
         let Some(project) = &mut self.bench.project else { return };
         if let Err(error) = project.history.commit(edit) {
             self.tell(Message::error(format!("{}: {error}", edit.label())));
@@ -240,6 +254,8 @@ impl Window {
             project.history.undo();
         }
         self.bench.preview = None;
+        self.bench.trial = None;
+        self.bench.curve_hand.let_go();
         self.follow_document();
     }
 
@@ -248,6 +264,8 @@ impl Window {
         while project.history.steps().1 > step && project.history.undo() {}
         while project.history.steps().1 < step && project.history.redo() {}
         self.bench.preview = None;
+        self.bench.trial = None;
+        self.bench.curve_hand.let_go();
         self.follow_document();
     }
 
@@ -264,11 +282,18 @@ impl Window {
         let clip = project.source_clip(work).cloned();
         self.bench.session.turn_to(work, clip.as_deref());
         self.bench.preview = None;
+        self.bench.trial = None;
+        self.bench.curve_hand.let_go();
     }
 
     pub(super) fn choose_joint(&mut self, joint: Option<usize>) {
         let session = &mut self.bench.session;
+        if session.joint != joint || !session.more_joints.is_empty() {
+            session.curves = session.curves.without_choice();
+            self.bench.curve_hand.let_go();
+        }
         session.joint = joint;
+        session.more_joints.clear();
         if session.filter.joint.is_some() {
             session.filter.joint = joint;
         }

@@ -15,6 +15,7 @@
 pub mod bench;
 pub mod blend_state;
 pub mod commands;
+mod curve_hand;
 mod file_picker;
 mod jobs;
 mod logic;

@@ -8,7 +8,7 @@ use egui::{ColorImage, Context, Rect, TextureHandle, TextureOptions, pos2};
 use crate::clip::Clip;
 use crate::raster::{Camera, Canvas, SceneView, render_into};
 
-use super::panels::DistanceKey;
+use super::panels::{CurvePress, DistanceKey};
 use super::view_models::{FaintFigure, HeatMap, MapRow, Memo, Stage, TimeWindow};
 
 /// A texture and the key of what is on it.
@@ -146,6 +146,8 @@ pub(crate) struct Pictures {
     pub scroll_to_joint: Option<usize>,
     /// The press that is held in the turn map began on the mark of a snag.
     pub press_is_on_mark: bool,
+    /// What a press on the curves has taken hold of.
+    pub curve_press: Option<CurvePress>,
     /// The snag table is to bring the chosen snag into view.
     pub scroll_to_snag: bool,
 }

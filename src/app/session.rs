@@ -1,5 +1,7 @@
 //! What a person is looking at: selection, playhead, camera, which curves. Not part of the document, not undone.
 
+mod curves;
+
 use std::collections::BTreeSet;
 
 use crate::clip::Clip;
@@ -8,6 +10,8 @@ use crate::scene::SnagMark;
 
 use super::blend_state::BlendHabits;
 use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeChoice, TimeWindow};
+
+pub use curves::CurveHabits;
 
 /// The speeds that the menu steps through.
 pub const SPEEDS: [f64; 7] = [0.1, 0.25, 0.5, 1.0, 1.5, 2.0, 4.0];
@@ -84,6 +88,8 @@ pub struct Session {
     pub work: usize,
     /// The chosen joint.
     pub joint: Option<usize>,
+    /// Further chosen joints, in the order in which they were added.
+    pub more_joints: Vec<usize>,
     /// The chosen snag.
     pub snag: Option<SnagMark>,
     /// Where play stands.
@@ -94,6 +100,11 @@ pub struct Session {
     pub choice: TimeChoice,
     /// What the curves show.
     pub curve_view: CurveView,
+    /// How the curves are set, and what is chosen on them.
+    pub curves: CurveHabits,
+    /// Seconds from a soft push to where nothing is left of it, to either side. One number for all that push: the discs of
+    /// the skeleton view and the curves.
+    pub falloff_secs: f64,
     /// What the turn map shows.
     pub heat_kind: HeatKind,
     /// Whether its hottest row is on top.
@@ -127,11 +138,14 @@ impl Default for Session {
         Self {
             work: 0,
             joint: None,
+            more_joints: Vec::new(),
             snag: None,
             playback: Playback::default(),
             window: TimeWindow::whole(1.0),
             choice: TimeChoice::default(),
             curve_view: CurveView::PlaneAngles,
+            curves: CurveHabits::default(),
+            falloff_secs: 0.4,
             heat_kind: HeatKind::TurnRate,
             worst_first: false,
             camera: Camera::default(),
@@ -150,6 +164,17 @@ impl Default for Session {
 }
 
 impl Session {
+    /// All chosen joints: first the one that was chosen last by itself, then the further ones.
+    pub fn joints(&self) -> Vec<usize> {
+        let more = self.more_joints.iter().copied().filter(|&joint| Some(joint) != self.joint);
+        self.joint.into_iter().chain(more).collect()
+    }
+
+    /// Whether a joint is among the chosen ones.
+    pub fn has_joint(&self, joint: usize) -> bool {
+        self.joint == Some(joint) || self.more_joints.contains(&joint)
+    }
+
     /// Whether only the source is to be seen now.
     pub fn shows_source_alone(&self) -> bool {
         self.source_alone || self.source_held
@@ -167,6 +192,8 @@ impl Session {
                 ..Playback::default()
             },
             curve_view: self.curve_view,
+            curves: self.curves.without_choice(),
+            falloff_secs: self.falloff_secs,
             heat_kind: self.heat_kind,
             worst_first: self.worst_first,
             camera: Camera { lens: self.camera.lens, ..Camera::default() },

@@ -3,13 +3,13 @@
 use std::path::PathBuf;
 use std::time::Duration;
 
-use egui::{Context, Key, KeyboardShortcut, Modifiers, Ui};
+use egui::{Context, Event, Key, KeyboardShortcut, Modifiers, Ui};
 
 use crate::exchange::ClipAddress;
 
 use super::Screen;
 use super::bench::Bench;
-use super::commands::{Action, Command, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
+use super::commands::{Action, Command, CurveAction, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
 use super::file_picker::FilePicker;
 use super::jobs::Jobs;
 use super::logic::{Answer, Asked};
@@ -154,6 +154,9 @@ impl Window {
         let mut all: Vec<(KeyboardShortcut, Action)> = own.chain(MORE_KEYS.iter().copied()).collect();
         // Ctrl+Shift+Z must be tried before Ctrl+Z, which would take it as well.
         all.sort_by_key(|(keys, _)| std::cmp::Reverse(modifier_count(keys.modifiers)));
+        if !is_typing {
+            self.take_clipboard_keys(ui);
+        }
         for (keys, action) in all {
             let is_plain = keys.modifiers.is_none() && !is_function_key(keys.logical_key);
             if (is_plain && has_focus) || (is_typing && !is_function_key(keys.logical_key)) {
@@ -163,6 +166,21 @@ impl Window {
                 self.commands.push(Command::Do(action));
             }
         }
+    }
+
+    /// The desktop's keys for copying and pasting come as events of their own.
+    fn take_clipboard_keys(&mut self, ui: &Ui) {
+        let actions = ui.input(|input| {
+            let action = |event: &Event| match event {
+                Event::Copy => Some(CurveAction::Copy),
+                Event::Cut => Some(CurveAction::Cut),
+                Event::Paste(_) if input.modifiers.shift => Some(CurveAction::PasteMirrored),
+                Event::Paste(_) => Some(CurveAction::Paste),
+                _ => None,
+            };
+            input.events.iter().filter_map(action).collect::<Vec<_>>()
+        });
+        self.commands.extend(actions.into_iter().map(|action| Command::Do(Action::Curve(action))));
     }
 
     fn advance_play(&mut self, ui: &Ui) {
@@ -195,6 +213,7 @@ impl Screen for Window {
         self.take_answers(ctx);
         self.run_commands(ctx);
         self.order_work();
+        self.settle_curves();
     }
 
     fn ui(&mut self, ui: &mut Ui) {

@@ -63,8 +63,8 @@ impl KeyEdit {
 /// `clip` with edits of keys, one after the other, and how many single changes found no key to change.
 ///
 /// Keys that no edit names keep their bits. A joint without keys gets some where keys are inserted. Tracks that hold their turns
-/// in a file's own angles have a row for each frame: there the frames take on what the edited keys play, and a frame that does
-/// not move keeps its numbers.
+/// in a file's own angles, a row for each frame, keep their rows: the frames take on what the edited keys play, and a frame that
+/// does not move keeps its numbers. Where rows were taken out before, what is left are keys like any others.
 #[must_use]
 pub fn with_key_edits(clip: &Clip, edits: &[KeyEdit]) -> (Clip, usize) {
     let near_secs = 0.25 / clip.grid.rate.max(1e-6);
@@ -87,7 +87,11 @@ pub fn with_key_edits(clip: &Clip, edits: &[KeyEdit]) -> (Clip, usize) {
         }
         let Some(track) = track else { continue };
         let track = match before {
-            Some(before) if before.stored != Stored::Rotors && !has_rows_of(&track, before) => {
+            Some(before)
+                if before.stored != Stored::Rotors
+                    && before.keys.len() >= clip.grid.count()
+                    && !has_rows_of(&track, before) =>
+            {
                 at_its_own_times(before, &track)
             }
             _ => track,

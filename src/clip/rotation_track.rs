@@ -155,6 +155,28 @@ impl RotationTrack {
         Self { keys: keys.into(), stored, ..self.clone() }
     }
 
+    /// Some neighbouring keys as a track of their own, with the segments between them. Its smooth paths end where it ends, so
+    /// they play as before only some keys inside.
+    ///
+    /// # Panics
+    /// When a key does not exist.
+    #[must_use]
+    pub fn part(&self, keys: std::ops::Range<usize>) -> Self {
+        let own: Vec<usize> = keys.clone().collect();
+        let starts = &own[..own.len().saturating_sub(1)];
+        let kinds: Vec<PathKind> = starts.iter().map(|&key| self.paths.of(key)).collect();
+        let each: Vec<_> = starts.iter().map(|&key| self.segments.of(key)).collect();
+        Self {
+            times: Times::Listed(own.iter().map(|&key| self.times.at(key)).collect()),
+            keys: own.iter().map(|&key| self.keys[key]).collect(),
+            paths: if kinds.is_empty() { self.paths.clone() } else { Paths::from_kinds(&kinds) },
+            tangents: self.tangents.as_ref().map(|all| all[keys].into()),
+            // The turns are no more than they were.
+            segments: Segments::new(&each, self.segments.ends()).unwrap_or_default(),
+            stored: self.stored.only(&own),
+        }
+    }
+
     /// Keys whose numbers differ from `other`'s in any bit, in the file's own form. Every key when their counts differ.
     pub fn changed_keys(&self, other: &Self) -> Vec<usize> {
         if self.keys.len() != other.keys.len() {

@@ -214,7 +214,7 @@ fn a_joint_chosen_in_the_tree_is_chosen_everywhere() {
     let name = clip.skeleton.label(joint).to_owned();
     bench.click(&format!("Joint {name}"));
     assert_eq!(bench.window().bench().session.joint, Some(joint));
-    assert_eq!(bench.window().bench().curves.as_ref().unwrap().parameters.0, joint);
+    assert_eq!(bench.window().bench().curves.as_ref().unwrap().parameters.joint, joint);
     let label = format!("Map row {name}");
     let row = bench.0.get_by_label(&label);
     assert_eq!(row.accesskit_node().toggled(), Some(egui::accesskit::Toggled::True));

@@ -1,5 +1,7 @@
 //! What a person can ask for without further words, and the menus that hold it.
 
+use super::CurveAction;
+
 /// An action without parameters: an entry of the table.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
 #[expect(missing_docs, reason = "each has its label and its tooltip in the table below")]
@@ -59,6 +61,7 @@ pub enum Action {
     LimitsFile,
     IsLoop,
     FindSlides,
+    Curve(CurveAction),
     Play,
     StepBack,
     StepForward,
@@ -100,13 +103,15 @@ pub enum Menu {
     Edit,
     View,
     Snags,
+    Keys,
     Time,
     Help,
 }
 
 impl Menu {
     /// All menus in order.
-    pub const ALL: [Self; 6] = [Self::File, Self::Edit, Self::View, Self::Snags, Self::Time, Self::Help];
+    pub const ALL: [Self; 7] =
+        [Self::File, Self::Edit, Self::View, Self::Snags, Self::Keys, Self::Time, Self::Help];
 
     /// Its title.
     pub const fn title(self) -> &'static str {
@@ -115,6 +120,7 @@ impl Menu {
             Self::Edit => "Edit",
             Self::View => "View",
             Self::Snags => "Snags",
+            Self::Keys => "Keys",
             Self::Time => "Time",
             Self::Help => "Help",
         }

@@ -13,12 +13,14 @@ use super::view_models::{SnagFilter, SnagOrder, TimeWindow};
 
 mod action;
 mod blend;
+mod curves;
 mod situation;
 mod table;
 mod time;
 
 pub use action::{Action, Menu};
 pub use blend::BlendCommand;
+pub use curves::{CurveAction, CurveCommand};
 pub use situation::Situation;
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
 pub(crate) use time::LEARNED;
@@ -35,6 +37,10 @@ pub enum Command {
     ShowClip(usize),
     /// Choose a joint, or none.
     ChooseJoint(Option<usize>),
+    /// Add a joint to the chosen ones, or take it out.
+    ChooseAlso(usize),
+    /// What the rotation curves ask for.
+    Curve(CurveCommand),
     /// Choose a snag and go there.
     ChooseSnag(usize),
     /// Move the playhead, seconds; onto the nearest frame.

@@ -67,6 +67,14 @@ pub struct Situation {
     pub search: SearchChoice,
     /// What the curves show.
     pub curve_view: Option<CurveView>,
+    /// How many keys are chosen.
+    pub chosen_keys: usize,
+    /// A segment is chosen.
+    pub has_segment: bool,
+    /// Keys were copied that fit the skeleton on show.
+    pub can_paste: bool,
+    /// Moved keys come to stand on frames.
+    pub snaps_to_frames: bool,
     /// What the turn map shows.
     pub heat_kind: Option<HeatKind>,
     /// A pass blends another clip in.

@@ -8,7 +8,7 @@ use egui::Context;
 use super::super::bench::{Evaluated, FromClips, Path3, Project, Searched, SourceState, file_name};
 use super::super::file_picker::{Picked, Purpose};
 use super::super::panels::{Dialog, Form, Level, Message};
-use super::super::view_models::{CurveSet, CurveView, HeatMap, HeatWish, TimeWindow};
+use super::super::view_models::{CurveKey, CurveSet, HeatMap, HeatWish, TimeWindow};
 use super::super::window::Window;
 use super::blend::BlendAnswer;
 use super::files::{Exported, OpenedScene};
@@ -71,7 +71,7 @@ pub(crate) enum Answer {
     /// The turn map.
     Heat(FromClips<HeatWish, Arc<HeatMap>>),
     /// The curves.
-    Curves(FromClips<(usize, CurveView), Arc<CurveSet>>),
+    Curves(Vec<FromClips<CurveKey, Arc<CurveSet>>>),
     /// The way of a tip.
     TipPath(FromClips<usize, Arc<Path3>>),
     /// The scene was written, or not.
@@ -154,7 +154,10 @@ impl Window {
                 }
             }
             Answer::Heat(heat) => self.bench.heat = Some(heat),
-            Answer::Curves(curves) => self.bench.curves = Some(curves),
+            Answer::Curves(mut curves) => {
+                self.bench.more_curves = curves.split_off(curves.len().min(1));
+                self.bench.curves = curves.pop();
+            }
             Answer::TipPath(path) => self.bench.tip_path = Some(path),
             Answer::Saved { serial, revision, path, result } => {
                 self.take_saved(serial, revision, &path, result, ctx);
@@ -183,6 +186,8 @@ impl Window {
         let Some(result) = self.bench.result() else { return };
         if !clip.has_skeleton_of(result) {
             self.bench.session.joint = result.skeleton.find(&label);
+            self.bench.session.more_joints.clear();
+            self.bench.session.curves = self.bench.session.curves.without_choice();
         }
     }
 
@@ -239,9 +244,12 @@ impl Window {
         self.dialog = None;
         self.bench.heat = None;
         self.bench.curves = None;
+        self.bench.more_curves = Vec::new();
+        self.bench.curve_hand.let_go();
         self.bench.tip_path = None;
         self.bench.blend = None;
         self.bench.preview = None;
+        self.bench.trial = None;
         let clip = project.source_clip(work).cloned();
         self.bench.project = Some(project);
         self.bench.session.turn_to(work, clip.as_deref());

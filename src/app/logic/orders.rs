@@ -5,7 +5,7 @@ use std::sync::Arc;
 use super::super::bench::{Evaluated, FromClips, Searched};
 use super::super::blend_state::BlendKey;
 use super::super::jobs::Slot;
-use super::super::view_models::{CurveView, HeatKind, HeatWish, changes, curve_set, heat_map, tip_path};
+use super::super::view_models::{CurveKey, HeatKind, HeatWish, changes, curve_set, heat_map, tip_path};
 use super::super::window::Window;
 use super::answers::Answer;
 use crate::clip::Clip;
@@ -24,8 +24,8 @@ pub(crate) struct Asked {
     pub evaluation: Option<(u64, usize, Vec<Pass>, Behind)>,
     /// Clips and colours.
     pub heat: Option<FromClips<HeatWish, ()>>,
-    /// Clips, joint and view.
-    pub curves: Option<FromClips<(usize, CurveView), ()>>,
+    /// Clips, joints and view.
+    pub curves: Option<FromClips<Vec<CurveKey>, ()>>,
     /// A blend.
     pub blend: Option<BlendKey>,
     /// Clips and joint.
@@ -80,7 +80,13 @@ impl Window {
         let behind = project.passes_behind(work);
         let is_unchanged =
             |passes: &[Pass]| known.is_some_and(|known| known.passes == passes && known.behind == behind);
-        if !self.bench.is_trying() && self.bench.work().is_some_and(|work| is_unchanged(&work.passes)) {
+        let is_tried = self.bench.is_trying();
+        if !is_tried && self.bench.work().is_some_and(|work| is_unchanged(&work.passes)) {
+            return;
+        }
+        // A drag asks for another result with each frame. What is on its way is let through first, else on a long clip none
+        // would ever arrive.
+        if is_tried && self.jobs.is_running(Slot::Evaluate) {
             return;
         }
         let passes = self.bench.passes();
@@ -138,11 +144,20 @@ impl Window {
     }
 
     fn order_curves(&mut self, source: &Arc<Clip>, result: &Arc<Clip>) {
-        let Some(joint) = self.bench.session.joint else { return };
-        let wanted = (joint, self.bench.session.curve_view);
-        let is_there = self.bench.curves.as_ref().is_some_and(|curves| curves.is_of(source, result, &wanted));
+        let joints = self.bench.session.joints();
+        let wanted: Vec<CurveKey> = joints.iter().map(|&joint| self.bench.curve_key(joint)).collect();
+        let is_there = |key: &CurveKey| {
+            let mut known = self.bench.curves.iter().chain(&self.bench.more_curves);
+            known.any(|curves| curves.is_of(source, result, key))
+        };
+        if wanted.iter().all(is_there) {
+            return;
+        }
         let is_ordered = self.asked.curves.as_ref().is_some_and(|asked| asked.is_of(source, result, &wanted));
-        if is_there || (is_ordered && self.jobs.is_running(Slot::Curves)) {
+        let runs = self.jobs.is_running(Slot::Curves);
+        // As with results: while something is dragged, what is on its way is let through first.
+        let same_joints = self.asked.curves.as_ref().is_some_and(|asked| asked.parameters == wanted);
+        if runs && (is_ordered || (same_joints && self.bench.trial.is_some())) {
             return;
         }
         let order = FromClips {
@@ -153,8 +168,13 @@ impl Window {
         };
         self.asked.curves = Some(order.clone());
         self.jobs.submit(Slot::Curves, move |watch| {
-            let value = curve_set(&order.source, &order.result, wanted.0, wanted.1, watch).ok()?;
-            Some(Answer::Curves(order.with(Arc::new(value))))
+            let sample = |&key: &CurveKey| {
+                let value = Arc::new(curve_set(&order.source, &order.result, &key, watch).ok()?);
+                let (source, result) = (Arc::clone(&order.source), Arc::clone(&order.result));
+                Some(FromClips { source, result, parameters: key, value })
+            };
+            let sets: Option<Vec<_>> = order.parameters.iter().map(sample).collect();
+            Some(Answer::Curves(sets?))
         });
     }
 

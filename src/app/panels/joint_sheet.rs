@@ -8,7 +8,7 @@ use super::super::view_models::{
     JointNumbers, RotationNumbers, SnagState, counted, degrees, degrees_fixed, joint_numbers, tree_rows,
 };
 use super::super::widgets::{Icon, focus_ring, hint, paint_icon, strip};
-use super::Scope;
+use super::{Scope, choose_joint};
 
 const TREE_ROW: f32 = 20.0;
 
@@ -45,7 +45,6 @@ pub(crate) fn joint_sheet_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
 fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     let look = scope.look;
     let rows = tree_rows(&clip.skeleton, &scope.bench.session.folded);
-    let chosen = scope.bench.session.joint;
     let mut open = vec![0_usize; clip.skeleton.len()];
     for (snag, &state) in scope.bench.snags().iter().zip(scope.states.iter()) {
         if state == SnagState::Open
@@ -72,7 +71,7 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
             let y = top + place as f32 * TREE_ROW;
             let bounds = Rect::from_min_size(pos2(area.left(), y), vec2(area.width(), TREE_ROW));
             let name = clip.skeleton.label(row.joint);
-            let is_chosen = chosen == Some(row.joint);
+            let is_chosen = scope.bench.session.has_joint(row.joint);
             let response = ui.interact(bounds, ui.scope_id().with(("tree", row.joint)), Sense::click());
             response.widget_info(|| {
                 WidgetInfo::selected(Role::TreeItem, true, is_chosen, format!("Joint {name}"))
@@ -122,7 +121,7 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
             ui.painter().galley(pos2(left + 18.0, bounds.center().y - galley.size().y / 2.0), galley, ink);
             focus_ring(ui, &response);
             if response.clicked() {
-                scope.out.push(Command::ChooseJoint(Some(row.joint)));
+                scope.out.push(choose_joint(ui, row.joint));
             }
             if response.double_clicked() && row.has_children {
                 scope.out.push(Command::Fold(row.joint));

@@ -27,6 +27,7 @@ use super::view_models::{SnagRow, SnagState};
 
 pub(crate) use blend_lane::blend_figures;
 pub(crate) use blend_picture::DistanceKey;
+pub(crate) use curves::CurvePress;
 pub(crate) use dialogs::{Dialog, Form, Then, dialogs_ui};
 pub(crate) use menus::menus_ui;
 pub(crate) use messages::{Level, Message, messages_ui};
@@ -52,6 +53,15 @@ pub(crate) struct Scope<'a> {
     pub out: &'a mut Vec<Command>,
     /// Colours.
     pub look: Look,
+}
+
+/// What a click on a joint asks for: it alone, or with Ctrl or Shift it as well.
+fn choose_joint(ui: &egui::Ui, joint: usize) -> Command {
+    if ui.input(|input| input.modifiers.command || input.modifiers.shift) {
+        Command::ChooseAlso(joint)
+    } else {
+        Command::ChooseJoint(Some(joint))
+    }
 }
 
 /// Lays out a panel inside exactly the room there is: content that is too wide is cut and can't push its panel wider.

@@ -148,7 +148,7 @@ fn choose(ui: &Ui, response: &egui::Response, bounds: Rect, scope: &mut Scope<'_
         solid.pick(&view.view(), DVec2::new(pixel.x.into(), pixel.y.into()), SLACK * scale)
     });
     if response.clicked() {
-        scope.out.push(Command::ChooseJoint(found));
+        scope.out.push(found.map_or(Command::ChooseJoint(None), |joint| super::choose_joint(ui, joint)));
     }
     if let Some(joint) = found {
         scope.out.push(Command::HoverJoint(joint));

@@ -321,21 +321,23 @@ fn draw_rows(
 fn labels_ui(ui: &Ui, body: Rect, axis: &TimeAxis, clip: &Clip, rows: &Rows<'_>, scope: &mut Scope<'_>) {
     let look = scope.look;
     let painter = ui.painter().clone();
-    let chosen = scope.bench.session.joint;
+    let chosen = scope.bench.session.joints();
     let choice = scope.bench.session.choice.clone();
     let labels = Rangef::new(body.left(), axis.span.min);
     for (place, row) in rows.visible.iter().enumerate() {
         let joint = row.joint;
         let cell = rows.bounds(place, labels);
         let stands_for = |joint: usize| row.members.iter().any(|&own| rows.heat.joints[own] == joint);
-        let is_chosen = chosen.is_some_and(stands_for);
+        let is_chosen = chosen.iter().any(|&joint| stands_for(joint));
         let response = ui.interact(cell, ui.scope_id().with(("map row", joint)), Sense::click());
         let name = clip.skeleton.label(joint);
         response.widget_info(|| WidgetInfo::selected(Role::Row, true, is_chosen, format!("Map row {name}")));
         if response.clicked() {
-            let adds = ui.input(|input| input.modifiers.command);
+            let (adds, also) = ui.input(|input| (input.modifiers.command, input.modifiers.shift));
             scope.out.push(if adds {
                 Command::Time(TimeCommand::Choose(toggled(&choice, row, rows)))
+            } else if also {
+                Command::ChooseAlso(joint)
             } else {
                 Command::ChooseJoint(Some(joint))
             });

@@ -1,13 +1,17 @@
 //! The rotation curves of one joint, before and after.
 
 use std::f64::consts::TAU;
+use std::sync::Arc;
 
 use crate::clip::{Clip, Place, Stored};
-use crate::rotor::{Bivector, Rotor, SwingTwist};
-use crate::snag::{Cancelled, Progress};
+use crate::limit::{JointLimit, SwingLimit};
+use crate::rotor::{Bivector, Rotor};
+use crate::snag::{Cancelled, Progress, Unwatched};
 
+use super::curve_measure::Measure;
 use super::pyramid::Pyramid;
-use super::sampled::{SampleTimes, limb_direction, rotation_at};
+use super::sampled::{SampleTimes, rotation_at};
+use super::time_window::TimeWindow;
 
 /// What the curves show of a joint's turns.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
@@ -69,6 +73,37 @@ impl CurveLine {
     }
 }
 
+/// What a set of curves hangs on beside the clips.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct CurveKey {
+    /// Which joint.
+    pub joint: usize,
+    /// Which view.
+    pub view: CurveView,
+    /// What it is held against.
+    pub limit: Option<JointLimit>,
+}
+
+/// How far one of the curves may go.
+#[derive(Clone, Debug, PartialEq)]
+pub struct LimitBand {
+    /// Which curve.
+    pub line: usize,
+    /// The lowest value, where there is one.
+    pub low: Option<f64>,
+    /// The highest value.
+    pub high: Ceiling,
+}
+
+/// The highest value that a curve may take.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Ceiling {
+    /// The same all the time.
+    Level(f64),
+    /// Another one from moment to moment: how far a limb may tilt hangs on the direction it tilts to.
+    Moving(Pyramid),
+}
+
 /// All curves of one joint in one view.
 #[derive(Clone, Debug, PartialEq)]
 pub struct CurveSet {
@@ -76,6 +111,8 @@ pub struct CurveSet {
     pub joint: usize,
     /// Which view.
     pub view: CurveView,
+    /// How far the joint may go.
+    pub bands: Vec<LimitBand>,
     /// Where the samples lie in time.
     pub times: SampleTimes,
     /// The curves.
@@ -93,6 +130,32 @@ impl CurveSet {
         rows.filter_map(|row| row.min_max(first..last))
             .reduce(|[low, high], [other_low, other_high]| [low.min(other_low), high.max(other_high)])
     }
+
+    /// The first three numbers shown of the result at a time; what there are fewer of is 0.
+    pub fn shown_at(&self, secs: f64) -> Option<[f64; 3]> {
+        let mut numbers = [0.0; 3];
+        for (number, line) in numbers.iter_mut().zip(&self.lines) {
+            *number = self.times.value(line.shown().values(), secs).filter(|value| value.is_finite())?;
+        }
+        Some(numbers)
+    }
+}
+
+/// The lowest and the highest value that show all curves within a stretch of time, with some air.
+pub fn fitted_values(sets: &[Arc<CurveSet>], window: TimeWindow) -> Option<[f64; 2]> {
+    let unit = sets.first()?.unit;
+    let ranges = sets.iter().filter_map(|set| set.range(window.start_secs, window.end_secs));
+    let both = |[low, high]: [f32; 2], [own_low, own_high]: [f32; 2]| [low.min(own_low), high.max(own_high)];
+    let [low, high] = ranges.reduce(both).unwrap_or([-1.0, 1.0]).map(f64::from);
+    // Noise on a joint that stands still must not look like motion.
+    let least = if unit.is_empty() { 0.05 } else { 6.0 };
+    if unit == "°/s" {
+        // A rate is never below zero: its axis stands on the ground.
+        let top = high.max(least);
+        return Some([-0.05 * top, 1.1 * top]);
+    }
+    let (span, middle) = ((high - low).max(least), f64::midpoint(low, high));
+    Some([middle - span * 0.56, middle + span * 0.56])
 }
 
 /// Rows of numbers with their names and colours.
@@ -105,17 +168,14 @@ type Rows = Vec<(String, usize, Vec<f32>)>;
 pub fn curve_set(
     source: &Clip,
     result: &Clip,
-    joint: usize,
-    view: CurveView,
+    key: &CurveKey,
     progress: &dyn Progress,
 ) -> Result<CurveSet, Cancelled> {
     let times = SampleTimes::new(&source.grid);
-    let (before, unit) = rows(source, joint, view, &times, progress)?;
-    let after = if source.same_joint(result, joint) {
-        None
-    } else {
-        Some(rows(result, joint, view, &times, progress)?.0)
-    };
+    let all: Vec<f64> = (0..times.len()).map(|index| times.time(index)).collect();
+    let (before, unit) = rows(source, key, &all, None, progress)?;
+    let is_same = source.same_joint(result, key.joint);
+    let after = if is_same { None } else { Some(rows(result, key, &all, None, progress)?.0) };
     let mut after = after.map(Vec::into_iter);
     let lines = before
         .into_iter()
@@ -125,14 +185,27 @@ pub fn curve_set(
             CurveLine { name, color, before: Pyramid::new(values), after: own_after }
         })
         .collect();
-    Ok(CurveSet { joint, view, times, lines, unit })
+    let bands = bands(result, key, &all);
+    Ok(CurveSet { joint: key.joint, view: key.view, bands, times, lines, unit })
+}
+
+/// The rows of `clip` alone at some times, going on from the numbers `start` on the left.
+pub(super) fn rows_between(
+    clip: &Clip,
+    key: &CurveKey,
+    times: &[f64],
+    start: Option<[f64; 3]>,
+) -> Vec<Vec<f32>> {
+    // Nobody tells it to stop.
+    let found = rows(clip, key, times, start, &Unwatched);
+    found.map(|(rows, _)| rows.into_iter().map(|(_, _, row)| row).collect()).unwrap_or_default()
 }
 
 fn rows(
     clip: &Clip,
-    joint: usize,
-    view: CurveView,
-    times: &SampleTimes,
+    key: &CurveKey,
+    times: &[f64],
+    start: Option<[f64; 3]>,
     progress: &dyn Progress,
 ) -> Result<(Rows, &'static str), Cancelled> {
     let named = |names: [&str; 3], columns: [Vec<f32>; 3]| {
@@ -143,27 +216,30 @@ fn rows(
             .map(|(color, (name, row))| (name.to_owned(), color, row))
             .collect()
     };
-    if view == CurveView::FileNumbers {
-        return Ok(file_numbers(clip, joint, times));
+    if key.view == CurveView::FileNumbers {
+        return Ok(file_numbers(clip, key.joint, times));
     }
+    let track = clip.rotation(key.joint).filter(|track| !track.times.is_empty());
     let mut rotors = Vec::with_capacity(times.len());
-    for index in 0..times.len() {
-        if index % 4096 == 0 && !progress.report(index, times.len()) {
+    for some in times.chunks(1 << 15) {
+        if !progress.report(rotors.len(), times.len()) {
             return Err(Cancelled);
         }
-        rotors.push(rotation_at(clip, joint, times.time(index)));
+        match track {
+            Some(track) => rotors.extend(track.at_all(some)),
+            None => rotors.extend(some.iter().map(|&secs| rotation_at(clip, key.joint, secs))),
+        }
     }
-    Ok(match view {
+    Ok(match key.view {
         CurveView::PlaneAngles | CurveView::FileNumbers => {
-            (named(["yz", "zx", "xy"], columns(&unrolled(&rotors))), "°")
+            (named(["yz", "zx", "xy"], columns(&unrolled_from(&rotors, start))), "°")
         }
         CurveView::SwingTwist => {
-            let axis = limb_direction(clip, joint);
-            let rest = clip.skeleton.chosen_rest(joint).rotation.reverse();
+            let measure = Measure::new(clip, key.joint, key.view, key.limit);
             let (mut swing, mut twist) = (Vec::new(), Vec::new());
-            let mut last_twist = 0.0;
+            let mut last_twist = start.map_or(0.0, |[_, twist, _]| twist.to_radians());
             for &rotor in &rotors {
-                let split = SwingTwist::new(rest * rotor, axis);
+                let split = measure.split(rotor);
                 swing.push(split.swing_rad().to_degrees() as f32);
                 last_twist = split.twist_rad + TAU * ((last_twist - split.twist_rad) / TAU).round();
                 twist.push(last_twist.to_degrees() as f32);
@@ -173,7 +249,7 @@ fn rows(
         CurveView::TurnRate => {
             let mut rates = vec![0.0; rotors.len()];
             for index in 1..rotors.len() {
-                let secs = times.time(index) - times.time(index - 1);
+                let secs = times[index] - times[index - 1];
                 rates[index] = (rotors[index - 1].turn_to(rotors[index]) / secs).to_degrees() as f32;
             }
             if let [first, second, ..] = rates.as_mut_slice() {
@@ -184,10 +260,33 @@ fn rows(
     })
 }
 
+/// How far the joint may go: in swing and twist, which is what limits speak of.
+fn bands(clip: &Clip, key: &CurveKey, times: &[f64]) -> Vec<LimitBand> {
+    let (CurveView::SwingTwist, Some(limit)) = (key.view, key.limit) else { return Vec::new() };
+    let mut bands = Vec::new();
+    let measure = Measure::new(clip, key.joint, key.view, key.limit);
+    let most = |secs: f64| {
+        let split = measure.split(rotation_at(clip, key.joint, secs));
+        measure.most_swing_rad(&split).map_or(f32::NAN, |rad| rad.to_degrees() as f32)
+    };
+    let ceiling = match limit.limit.swing {
+        SwingLimit::Cone { half_rad } => Ceiling::Level(half_rad.to_degrees()),
+        SwingLimit::Ellipse { .. } | SwingLimit::Hinge { .. } => {
+            Ceiling::Moving(Pyramid::new(times.iter().map(|&secs| most(secs)).collect()))
+        }
+    };
+    bands.push(LimitBand { line: 0, low: None, high: ceiling });
+    if !limit.limit.twist.is_free() {
+        let [low, high] = limit.limit.twist.to_degrees();
+        bands.push(LimitBand { line: 1, low: Some(low), high: Ceiling::Level(high) });
+    }
+    bands
+}
+
 /// Plane angles in degrees that run on over any number of whole turns: of all triples that mean the turn, the one
 /// nearest to that of the sample before.
-fn unrolled(rotors: &[Rotor]) -> Vec<[f64; 3]> {
-    let mut last = Bivector::ZERO;
+fn unrolled_from(rotors: &[Rotor], start: Option<[f64; 3]>) -> Vec<[f64; 3]> {
+    let mut last = start.map_or(Bivector::ZERO, Bivector::from_degrees);
     rotors
         .iter()
         .map(|rotor| {
@@ -208,13 +307,14 @@ fn columns(triples: &[[f64; 3]]) -> [Vec<f32>; 3] {
 }
 
 /// The stored numbers on straight lines between the keys, since the numbers, not the poses, are what is looked at.
-fn file_numbers(clip: &Clip, joint: usize, times: &SampleTimes) -> (Rows, &'static str) {
+fn file_numbers(clip: &Clip, joint: usize, times: &[f64]) -> (Rows, &'static str) {
     let Some(track) = clip.rotation(joint).filter(|track| !track.times.is_empty()) else {
         return (Vec::new(), "°");
     };
     let sample = |number: &dyn Fn(usize) -> f64| -> Vec<f32> {
-        (0..times.len())
-            .map(|index| match track.times.place(times.time(index)) {
+        times
+            .iter()
+            .map(|&secs| match track.times.place(secs) {
                 None => f32::NAN,
                 Some(Place::At(key)) => number(key) as f32,
                 Some(Place::Between(key, share)) => {
@@ -261,7 +361,7 @@ mod tests {
         let rotors: Vec<Rotor> = (0..=80)
             .map(|i| Rotor::from_plane_angles(Bivector::from_degrees([0.0, 0.0, f64::from(i) * 10.0])))
             .collect();
-        let angles = unrolled(&rotors);
+        let angles = unrolled_from(&rotors, None);
         for (i, triple) in angles.iter().enumerate() {
             assert!((triple[2] - i as f64 * 10.0).abs() < 1e-6, "{i}: {triple:?}");
         }
@@ -270,7 +370,7 @@ mod tests {
     #[test]
     fn a_sign_change_of_the_rotor_leaves_the_plane_angles() {
         let rotor = Rotor::from_plane_angles(Bivector::from_degrees([10.0, 170.0, -20.0]));
-        let angles = unrolled(&[rotor, -rotor]);
+        let angles = unrolled_from(&[rotor, -rotor], None);
         assert!((0..3).all(|part| (angles[0][part] - angles[1][part]).abs() < 1e-9), "{angles:?}");
     }
 }

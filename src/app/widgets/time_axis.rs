@@ -61,13 +61,24 @@ pub(crate) fn scrub_and_zoom(
     wheel_zooms: bool,
     out: &mut Vec<Command>,
 ) {
-    let (duration, rate) = (clip.duration_secs, clip.grid.rate);
+    scrub_or_pan(ui, response, axis, clip, out);
+    zoom_time(ui, response, area, axis, clip, wheel_zooms, out);
+}
+
+/// Dragging scrubs, with the middle button or Shift it pans.
+pub(crate) fn scrub_or_pan(
+    ui: &Ui,
+    response: &Response,
+    axis: &TimeAxis,
+    clip: &Clip,
+    out: &mut Vec<Command>,
+) {
     let shift = ui.input(|input| input.modifiers.shift);
     let pans =
         response.dragged_by(PointerButton::Middle) || (response.dragged_by(PointerButton::Primary) && shift);
     if pans {
         let secs = -f64::from(response.drag_delta().x / axis.span.span().max(1.0)) * axis.window.span();
-        out.push(Command::ShowTime(axis.window.pan(secs, duration)));
+        out.push(Command::ShowTime(axis.window.pan(secs, clip.duration_secs)));
     } else if (response.is_pointer_button_down_on() && ui.input(|input| input.pointer.primary_down())
         || is_quick_click(ui, response))
         && !shift
@@ -75,6 +86,20 @@ pub(crate) fn scrub_and_zoom(
     {
         out.push(Command::Scrub(axis.time(pointer.x)));
     }
+}
+
+/// The wheel zooms, sideways or with Shift it pans.
+pub(crate) fn zoom_time(
+    ui: &Ui,
+    response: &Response,
+    area: Rect,
+    axis: &TimeAxis,
+    clip: &Clip,
+    wheel_zooms: bool,
+    out: &mut Vec<Command>,
+) {
+    let (duration, rate) = (clip.duration_secs, clip.grid.rate);
+    let shift = ui.input(|input| input.modifiers.shift);
     let Some(pointer) = response.hover_pos().filter(|pointer| area.contains(*pointer)) else { return };
     let (wheel, zoom) = ui.input(|input| (input.smooth_scroll_delta, input.zoom_delta()));
     let mut window = axis.window;

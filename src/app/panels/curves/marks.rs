@@ -1,0 +1,292 @@
+//! What is drawn on the chart beside its keys: limits, snags, lines, names and numbers.
+
+use egui::{Align2, Color32, FontId, Painter, Pos2, Rangef, Rect, Shape, Stroke, Ui, pos2, vec2};
+
+use super::super::super::theme::{INSET, Look};
+use super::super::super::view_models::{Ceiling, CurveLine, CurveSet, Pyramid, SnagState, degrees_fixed, seconds};
+use super::super::super::widgets::{TimeAxis, letter_plate, read_out};
+use super::super::Scope;
+use super::chart::Chart;
+use super::draw::draw_curve;
+use super::short;
+
+/// The share of its ink that the line of a further joint keeps.
+const FURTHER_INK: f32 = 0.62;
+
+/// Beyond the limits of the chosen joint the ground is shaded, with a line along the limit.
+pub(super) fn bands_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
+    let Some(set) = chart.sets.first() else { return };
+    let plot = chart.plot;
+    for band in &set.bands {
+        let color = set.lines.get(band.line).map_or(look.axis, |line| look.curve(line.color));
+        let (fill, stroke) = (color.gamma_multiply(0.13), Stroke::new(1.2, color.gamma_multiply(0.7)));
+        let name = set.lines.get(band.line).map_or("", |line| line.name.as_str());
+        let label = |y: f32, align: Align2| {
+            let words = format!("limit of {name}");
+            let font = FontId::proportional(11.0);
+            painter.text(pos2(plot.left() + 6.0, y), align, words, font, look.faint);
+        };
+        let level = |value: f64, is_top: bool| {
+            let y = chart.values.y(value);
+            let rows = if is_top { Rangef::new(plot.top() - 8.0, y) } else { Rangef::new(y, plot.bottom() + 4.0) };
+            if rows.span() > 0.0 {
+                painter.rect_filled(Rect::from_x_y_ranges(plot.x_range(), rows), 0.0, fill);
+                painter.hline(plot.x_range(), y, stroke);
+                let align = if is_top { Align2::LEFT_BOTTOM } else { Align2::LEFT_TOP };
+                label(y, align);
+            }
+        };
+        if let Some(low) = band.low {
+            level(low, false);
+        }
+        match &band.high {
+            Ceiling::Level(high) => level(*high, true),
+            Ceiling::Moving(row) => {
+                let mut mesh = egui::Mesh::default();
+                let top = plot.top() - 8.0;
+                let mut last: Option<Pos2> = None;
+                let columns = (plot.width() / 2.0).max(1.0) as usize;
+                for column in 0..=columns {
+                    let x = plot.left() + column as f32 * 2.0;
+                    let value = set.times.value(row.values(), chart.axis.time(x));
+                    let Some(value) = value.filter(|value| value.is_finite()) else { continue };
+                    let at = pos2(x, chart.values.y(value).max(top));
+                    if let Some(before) = last {
+                        let cell = Rect::from_min_max(pos2(before.x, top), pos2(x, f32::midpoint(before.y, at.y)));
+                        mesh.add_colored_rect(cell, fill);
+                        painter.line_segment([before, at], stroke);
+                    } else if at.y > top + 12.0 {
+                        label(at.y, Align2::LEFT_BOTTOM);
+                    }
+                    last = Some(at);
+                }
+                painter.add(Shape::mesh(mesh));
+            }
+        }
+    }
+}
+
+/// The curves: the source in grey, the result in colour, and in front of it what is being done by hand.
+pub(super) fn lines_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, shows_before: bool) {
+    let alone = chart.is_source_alone;
+    let (axis, values) = (&chart.axis, &chart.values);
+    for set in chart.sets {
+        for line in set.lines.iter().filter(|_| shows_before || alone) {
+            let local = chart.local(set.joint).is_some();
+            if line.after.is_some() || local {
+                let width = if alone { 1.6 } else { 1.2 };
+                draw_curve(painter, &line.before, &set.times, axis, values, Stroke::new(width, look.before));
+            }
+        }
+    }
+    if alone {
+        for set in chart.sets {
+            for line in set.lines.iter().filter(|line| line.after.is_none()) {
+                let stroke = Stroke::new(1.6, look.curve(line.color));
+                draw_curve(painter, &line.before, &set.times, axis, values, stroke);
+            }
+        }
+        return;
+    }
+    // The chosen joint's last, so that they lie on top.
+    for (place, set) in chart.sets.iter().enumerate().rev() {
+        for (index, line) in set.lines.iter().enumerate() {
+            let color = look.curve(line.color);
+            let stroke = if place == 0 {
+                Stroke::new(1.7, color)
+            } else {
+                Stroke::new(1.2, color.gamma_multiply(FURTHER_INK))
+            };
+            let Some(local) = chart.local(set.joint) else {
+                draw_curve(painter, line.shown(), &set.times, axis, values, stroke);
+                continue;
+            };
+            let [start, end] = local.span().map(|secs| axis.x(secs));
+            let clip = painter.clip_rect();
+            for part in [Rangef::new(clip.left(), start), Rangef::new(end, clip.right())] {
+                let part = Rect::from_x_y_ranges(part, clip.y_range()).intersect(clip);
+                if part.width() > 0.0 {
+                    draw_curve(&painter.with_clip_rect(part), line.shown(), &set.times, axis, values, stroke);
+                }
+            }
+            let Some(row) = local.rows.get(index) else { continue };
+            let points = local.times.iter().zip(row).filter(|(_, value)| value.is_finite());
+            let points =
+                points.map(|(&secs, &value)| pos2(axis.x(secs), values.y(value.into()))).collect::<Vec<_>>();
+            painter.add(Shape::line(points, stroke));
+        }
+    }
+}
+
+/// The chosen segment is drawn thick, between two edges.
+pub(super) fn segment_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, segment: Option<(usize, f64)>) {
+    let Some((joint, secs)) = segment else { return };
+    let Some(set) = chart.sets.iter().find(|set| set.joint == joint) else { return };
+    let Some([start, end]) = chart.segment(joint, secs) else { return };
+    let span = Rangef::new(chart.axis.x(start), chart.axis.x(end));
+    let ground = Rect::from_x_y_ranges(span, chart.plot.y_range());
+    painter.rect_filled(ground, 0.0, look.selection.gamma_multiply(0.10));
+    for x in [span.min, span.max] {
+        painter.vline(x, chart.plot.y_range(), (1.0, look.selection.gamma_multiply(0.7)));
+    }
+    for (line, own) in set.lines.iter().enumerate() {
+        let steps = 64;
+        let at = |step: usize| {
+            chart.place(set, line, start + (end - start) * f64::from(step as u32) / f64::from(steps as u32))
+        };
+        let points: Vec<Pos2> = (0..=steps).filter_map(at).collect();
+        painter.add(Shape::line(points, Stroke::new(3.0, look.curve(own.color))));
+    }
+}
+
+/// Where the joints' snags lie: a bar along the top with the kind's letter, and faint edges down the chart.
+pub(super) fn snag_spans_ui(painter: &Painter, axis: &TimeAxis, plot: Rect, joints: &[usize], scope: &Scope<'_>) {
+    let look = &scope.look;
+    let chosen = scope.bench.session.snag;
+    let mut last_x = f32::NEG_INFINITY;
+    for (snag, &state) in scope.bench.snags().iter().zip(scope.states.iter()) {
+        if !scope.bench.shown_joint(snag.joint).is_some_and(|joint| joints.contains(&joint)) {
+            continue;
+        }
+        let (left, right) = (axis.x(snag.first_secs), axis.x(snag.last_secs));
+        if right < axis.span.min || left > axis.span.max {
+            continue;
+        }
+        let color = if state == SnagState::Open { look.snag } else { look.axis };
+        let is_chosen = chosen == Some(crate::scene::SnagMark::of(snag));
+        if is_chosen {
+            let span = Rect::from_x_y_ranges(Rangef::new(left - 1.5, right + 1.5), plot.y_range());
+            painter.rect_filled(span, 0.0, look.selection.gamma_multiply(0.10));
+            for x in [left, right] {
+                painter.vline(x, plot.y_range(), (1.0, color.gamma_multiply(0.8)));
+            }
+        }
+        let y = plot.top() - 2.0;
+        painter.hline(left - 1.5..=right + 1.5, y, (3.0, color));
+        let middle = f32::midpoint(left.max(axis.span.min), right.min(axis.span.max));
+        if middle > last_x + 14.0 || is_chosen {
+            letter_plate(painter, look, pos2(middle, y + 9.0), 13.0, snag.kind.letter(), state);
+            last_x = middle;
+        }
+    }
+}
+
+/// The name of each curve at its right end: colour alone must not tell them apart.
+pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
+    const APART: f32 = 14.0;
+    let several = chart.sets.len() > 1;
+    if !several && chart.sets.iter().all(|set| set.lines.len() < 2) {
+        return;
+    }
+    let font = FontId::proportional(12.0);
+    let mut places: Vec<(f32, String, Color32)> = Vec::new();
+    for set in chart.sets {
+        let joint = if several { format!("{} ", short(chart.clip.skeleton.label(set.joint))) } else { String::new() };
+        for (index, line) in set.lines.iter().enumerate() {
+            let value = chart.value(set, index, chart.axis.window.end_secs);
+            let y = value.map(|value| chart.values.y(value)).filter(|y| y.is_finite());
+            if let Some(y) = y.filter(|y| chart.plot.y_range().expand(6.0).contains(*y)) {
+                places.push((y, format!("{joint}{}", line.name), legible(look, line.color)));
+            }
+        }
+    }
+    places.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let rows = chart.values.rows;
+    let mut lowest = f32::NEG_INFINITY;
+    let count = places.len();
+    for (place, (y, words, color)) in places.into_iter().enumerate() {
+        // Above its curve, below the name before it, and with room for those still to come.
+        let room = rows.max - APART * (count - place) as f32;
+        let y = (y - 9.0).max(lowest + APART).clamp(rows.min, room.max(rows.min));
+        lowest = y;
+        let galley = painter.layout_no_wrap(words, font.clone(), color);
+        let at = pos2(chart.axis.span.max - galley.size().x - 4.0, y - galley.size().y / 2.0);
+        let plate = Rect::from_min_size(at, galley.size()).expand2(vec2(3.0, 0.0));
+        painter.rect_filled(plate, 3.0, look.background.gamma_multiply(0.85));
+        painter.galley(at, galley, look.text);
+    }
+}
+
+/// Names and values of the chosen joint at the playhead, left of the numbers of the axis. The curve that the keyboard moves has a
+/// dot.
+pub(super) fn legend_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, now: f64, chosen: usize) {
+    let Some(set) = chart.sets.first() else { return };
+    let area = chart.area;
+    let mut y = area.top() + 16.0;
+    let left = area.left() + INSET;
+    for (index, line) in set.lines.iter().enumerate() {
+        let is_source = chart.is_source_alone && line.after.is_some();
+        let color = if is_source { look.before } else { look.curve(line.color) };
+        painter.hline(left..=left + 12.0, y, (2.5, color));
+        if index == chosen && set.lines.len() > 1 {
+            painter.circle_filled(pos2(left + 6.0, y), 3.6, color);
+        }
+        let at = pos2(left + 17.0, y);
+        painter.text(at, Align2::LEFT_CENTER, &line.name, FontId::proportional(12.5), look.text);
+        y += 15.0;
+        let mono = FontId::monospace(11.5);
+        let words = |value: Option<f64>| value.map_or(String::new(), |value| number(value, set.unit));
+        let value = words(chart.value(set, index, now));
+        let before = words(set.times.value(line.before.values(), now));
+        let end = painter.text(pos2(left + 17.0, y), Align2::LEFT_CENTER, &value, mono.clone(), look.text);
+        if before != value && !chart.is_source_alone && area.height() > 50.0 * set.lines.len() as f32 {
+            y += 14.0;
+            let words = format!("was {before}");
+            painter.text(pos2(end.left(), y), Align2::LEFT_CENTER, words, mono, look.before);
+        }
+        y += 19.0;
+        if y > area.bottom() - 20.0 {
+            break;
+        }
+    }
+}
+
+/// A value as it is written.
+pub(super) fn number(value: f64, unit: &str) -> String {
+    if !value.is_finite() {
+        return "not a number".to_owned();
+    }
+    match unit {
+        "" => format!("{value:.4}"),
+        "°/s" => format!("{value:.0}°/s"),
+        _ => degrees_fixed(value),
+    }
+}
+
+/// All numbers at the frame under the pointer.
+pub(super) fn hover_ui(ui: &Ui, look: &Look, pointer: Pos2, chart: &Chart<'_>) {
+    let clip = chart.clip;
+    let time = chart.axis.time(pointer.x).clamp(0.0, clip.duration_secs);
+    let frame = clip.grid.frame(time);
+    let at = clip.grid.time(frame);
+    let painter = ui.painter_at(chart.plot.expand(4.0));
+    painter.vline(chart.axis.x(at), chart.plot.y_range(), (1.0, look.axis));
+    let mut lines = vec![(format!("{}  frame {frame}", seconds(at)), look.faint)];
+    for set in chart.sets {
+        if chart.sets.len() > 1 {
+            lines.push((short(clip.skeleton.label(set.joint)), look.text));
+        }
+        for (index, line) in set.lines.iter().enumerate() {
+            let Some(value) = chart.value(set, index, at) else { continue };
+            let mut words = format!("{:<5} {:>10}", line.name, number(value, set.unit));
+            if let Some(before) = before_at(set, line, at)
+                && (before - value).abs() > 5e-3
+            {
+                words = format!("{words}  was {}", number(before, set.unit));
+            }
+            lines.push((words, legible(look, line.color)));
+        }
+    }
+    let layer =
+        ui.ctx().layer_painter(egui::LayerId::new(egui::Order::Tooltip, ui.scope_id().with("read-out")));
+    read_out(&layer, look, pointer + vec2(0.0, 6.0), ui.ctx().content_rect(), &lines);
+}
+
+fn before_at(set: &CurveSet, line: &CurveLine, secs: f64) -> Option<f64> {
+    let row: &Pyramid = &line.before;
+    set.times.value(row.values(), secs)
+}
+
+fn legible(look: &Look, color: usize) -> Color32 {
+    if look.palette.is_dark() { look.curve(color) } else { look.text }
+}

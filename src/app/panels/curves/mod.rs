@@ -1,0 +1,135 @@
+//! The rotation curves of the chosen joints: the source in grey, the result in colour, keys and segments to be worked on.
+
+mod axis;
+mod bar;
+mod chart;
+mod draw;
+mod hand;
+mod keys;
+mod marks;
+mod spacing;
+
+use egui::{Rangef, Rect, Role, Sense, Ui, WidgetInfo, pos2};
+
+use super::super::commands::Action;
+use super::super::theme::{GUTTER_WIDTH, TIME_MARGIN};
+use super::super::view_models::{CurveView, fitted_values};
+use super::super::widgets::{TimeAxis, hint, playhead, segment, strip, vertical_grid};
+use super::Scope;
+use axis::ValueAxis;
+use chart::Chart;
+
+pub(crate) use hand::CurvePress;
+
+/// Height of the lane of keys below the chart.
+const LANE_HEIGHT: f32 = 15.0;
+/// Height of the bar of numbers below the lane.
+const BAR_HEIGHT: f32 = 29.0;
+
+/// The panel.
+pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let clip = scope.bench.result().cloned();
+    let joints = scope.bench.session.joints();
+    let name = |joint: usize| {
+        let clip = clip.as_ref().filter(|clip| joint < clip.skeleton.len());
+        clip.map_or(String::new(), |clip| short(clip.skeleton.label(joint)))
+    };
+    let title = match joints.as_slice() {
+        [] => "Rotation curves".to_owned(),
+        [only] => format!("Rotation curves: {}", name(*only)),
+        [first, more @ ..] => format!("Rotation curves: {} and {} more", name(*first), more.len()),
+    };
+    strip(ui, &title, |ui| {
+        segment(ui, CurveView::TurnRate.label(), Action::TurnRate, scope.now, scope.out);
+        segment(ui, CurveView::FileNumbers.label(), Action::FileNumbers, scope.now, scope.out);
+        segment(ui, CurveView::SwingTwist.label(), Action::SwingTwist, scope.now, scope.out);
+        segment(ui, CurveView::PlaneAngles.label(), Action::PlaneAngles, scope.now, scope.out);
+    });
+    let Some(clip) = clip else {
+        hint(ui, "No clip");
+        return;
+    };
+    if joints.is_empty() {
+        hint(ui, "Choose a joint to see how it turns: in the figure, on the map or in the tree");
+        return;
+    }
+    let sets = scope.bench.curve_sets();
+    if sets.is_empty() {
+        hint(ui, "Sampling…");
+        return;
+    }
+    if sets.iter().all(|set| set.lines.is_empty()) {
+        hint(ui, "The file turns this joint nowhere: it stays at its rest pose. Insert puts a key at the playhead");
+        return;
+    }
+    let whole = ui.available_rect_before_wrap();
+    if whole.width() < GUTTER_WIDTH + 60.0 || whole.height() < 40.0 {
+        return;
+    }
+    let has_bar = whole.height() > 110.0;
+    let bar_top = if has_bar { whole.bottom() - BAR_HEIGHT } else { whole.bottom() };
+    let area = Rect::from_min_max(whole.min, pos2(whole.right(), bar_top));
+    let session = &scope.bench.session;
+    let axis = TimeAxis {
+        span: Rangef::new(area.left() + GUTTER_WIDTH, area.right() - TIME_MARGIN),
+        window: session.window,
+    };
+    let lane_top = area.bottom() - LANE_HEIGHT;
+    let plot = Rect::from_x_y_ranges(axis.span, Rangef::new(area.top() + 8.0, lane_top - 5.0));
+    let lane = Rect::from_x_y_ranges(axis.span, Rangef::new(lane_top, area.bottom()));
+    let response = ui.allocate_rect(area, Sense::click_and_drag());
+    response.widget_info(|| WidgetInfo::labeled(Role::Canvas, true, "Rotation curves chart"));
+    let bounds = session.curves.values.or_else(|| fitted_values(&sets, session.window));
+    let chart = Chart {
+        area,
+        plot,
+        lane,
+        axis,
+        values: ValueAxis::new(bounds.unwrap_or([-1.0, 1.0]), plot.y_range()),
+        clip: &clip,
+        shown: scope.bench.curve_hand.shown.as_ref(),
+        choice: scope.bench.curve_hand.shown.as_ref().map_or(&session.curves.keys, |shown| &shown.choice),
+        sets: &sets,
+        is_source_alone: session.shows_source_alone(),
+    };
+    let hover = hand::hand_ui(ui, &response, &chart, scope);
+
+    let look = scope.look;
+    let painter = ui.painter_at(area);
+    chart.values.grid_ui(&painter, &look, &axis, sets[0].unit);
+    vertical_grid(&painter, &axis, &clip, plot.y_range(), look.grid);
+    let inside = ui.painter_at(Rect::from_x_y_ranges(
+        axis.span.expand(1.0),
+        Rangef::new(area.top(), plot.bottom() + 4.0),
+    ));
+    marks::bands_ui(&inside, &look, &chart);
+    marks::snag_spans_ui(&inside, &axis, plot, &joints, scope);
+    marks::lines_ui(&inside, &look, &chart, session.shows_before);
+    marks::segment_ui(&inside, &look, &chart, session.curves.segment);
+    keys::pips_ui(ui, &inside, &look, &chart);
+    keys::lane_ui(ui, &look, &chart);
+    marks::names_ui(&inside, &look, &chart);
+    let now = session.playback.playhead_secs;
+    playhead(&painter, &look, &axis, now, area.y_range());
+    marks::legend_ui(&painter, &look, &chart, now, session.curves.line);
+    hand::gesture_ui(ui, &chart, scope, &hover);
+    if let Some(pointer) = response.hover_pos().filter(|pointer| plot.expand(4.0).contains(*pointer)) {
+        marks::hover_ui(ui, &look, pointer, &chart);
+    }
+    spacing::spacing_ui(ui, &chart, scope);
+    if has_bar {
+        let bounds = Rect::from_min_max(pos2(whole.left(), bar_top), whole.max);
+        bar::bar_ui(ui, bounds, &chart, scope);
+    }
+}
+
+/// Long names keep their end, which tells left from right and first from second.
+fn short(name: &str) -> String {
+    const MOST: usize = 28;
+    let count = name.chars().count();
+    if count <= MOST {
+        name.to_owned()
+    } else {
+        format!("…{}", name.chars().skip(count - MOST).collect::<String>())
+    }
+}
