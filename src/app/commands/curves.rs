@@ -17,7 +17,7 @@ pub enum CurveAction {
     ChooseAll,
     ChooseNone,
     ChooseHere,
-    ChooseLoop,
+    ChooseRange,
     ChooseSegment,
     MoreAbove,
     MoreBelow,

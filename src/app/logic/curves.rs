@@ -2,15 +2,18 @@
 
 use std::sync::Arc;
 
+use super::super::bench::FromClips;
 use super::super::commands::{CurveAction, CurveCommand};
 use super::super::curve_hand::ShownStroke;
 use super::super::panels::Message;
 use super::super::view_models::{
-    Grip, KeyBase, KeyChoice, KeyDrag, Stroke, counted, fitted_values, key_at, local_curves, with_more,
+    CurveKey, CurveSet, Grip, KeyBase, KeyChoice, KeyDrag, Stroke, counted, fitted_values, key_at,
+    local_curves, with_more,
 };
 use super::super::window::Window;
 use crate::clip::{
-    Clip, CopiedKeys, KeyChange, KeyEdit, MeantTurn, NewKey, PathKind, RotationTrack, Smoothing, Spacing, Stored,
+    Clip, CopiedKeys, KeyChange, KeyEdit, MeantTurn, NewKey, PathKind, RotationTrack, Smoothing, Spacing,
+    Stored,
 };
 use crate::scene::{ClipWork, Edit, KeysPass, PassStep, PushPass, ReducePass, Scope, SmoothPass};
 use crate::skeleton::Mirror;
@@ -68,9 +71,9 @@ impl Window {
                 self.bench.session.curves.segment = None;
             }
             C::ChooseHere => self.choose_here(),
-            C::ChooseLoop => {
-                if let Some((from, to)) = self.bench.session.playback.range {
-                    self.choose_within([from, to]);
+            C::ChooseRange => {
+                if let Some(span) = self.chosen_span() {
+                    self.choose_within(span);
                 }
             }
             C::ChooseSegment => self.choose_segment_here(),
@@ -131,13 +134,20 @@ impl Window {
 
     fn key_base(&mut self) -> Option<KeyBase> {
         let clip = self.settled_result()?;
-        let sets = self.bench.curve_sets();
+        // Numbers of an older result would undo what was done since.
+        let of_now = |curves: &&FromClips<CurveKey, Arc<CurveSet>>| {
+            curves.result.same_joint(&clip, curves.parameters.joint)
+        };
+        let known = self.bench.curves.iter().chain(&self.bench.more_curves).filter(of_now);
+        let view = self.bench.session.curve_view;
+        let of_view = known.filter(|curves| curves.parameters.view == view);
+        let sets = of_view.map(|curves| Arc::clone(&curves.value)).collect();
         let limits = self.bench.limits().cloned();
         let session = &self.bench.session;
         Some(KeyBase {
             clip,
             sets,
-            view: session.curve_view,
+            view,
             limits,
             choice: session.curves.keys.clone(),
             snaps_to_frames: session.curves.snaps_to_frames,
@@ -194,7 +204,8 @@ impl Window {
             let document = self.bench.project.as_ref().map(|project| Arc::clone(project.document()));
             let tried = document.and_then(|document| edit.apply(&document).ok());
             // What does not fit is told when it is let go.
-            self.bench.trial = tried.map(|mut tried| std::mem::take(&mut tried.works[self.bench.session.work].passes));
+            self.bench.trial =
+                tried.map(|mut tried| std::mem::take(&mut tried.works[self.bench.session.work].passes));
         }
         self.bench.curve_hand.shown = Some(ShownStroke { stroke, drag, choice, locals });
     }
@@ -219,7 +230,9 @@ impl Window {
         let edit = Edit::Together { label, edits: vec![edit_of(work, own, &base.clip, &stroke)] };
         let Some(project) = &mut self.bench.project else { return };
         let done = match run {
-            Some(run) => project.history.commit_stroke(&edit, STROKE ^ (self.bench.curve_hand.serial << 8) ^ run),
+            Some(run) => {
+                project.history.commit_stroke(&edit, STROKE ^ (self.bench.curve_hand.serial << 8) ^ run)
+            }
             None => project.history.commit(&edit),
         };
         if let Err(error) = done {
@@ -248,9 +261,8 @@ impl Window {
         let known = self.bench.findings().and_then(|findings| findings.evaluated.as_ref());
         let is_evaluated = known.zip(passes).is_some_and(|(known, passes)| known.passes == *passes);
         let result = self.bench.result();
-        let is_drawn = |curves: &super::super::bench::FromClips<_, _>| {
-            result.is_some_and(|result| Arc::ptr_eq(&curves.result, result))
-        };
+        let is_drawn =
+            |curves: &FromClips<_, _>| result.is_some_and(|result| Arc::ptr_eq(&curves.result, result));
         if is_evaluated && self.bench.curves.as_ref().is_none_or(is_drawn) {
             self.bench.curve_hand.shown = None;
         }
@@ -331,7 +343,8 @@ impl Window {
             session.joint = joints.first().copied();
             session.more_joints = joints.get(1..).unwrap_or_default().to_vec();
         }
-        let label = format!("Paste {}{}", counted(choice.len(), "key"), if mirrored { " mirrored" } else { "" });
+        let label =
+            format!("Paste {}{}", counted(choice.len(), "key"), if mirrored { " mirrored" } else { "" });
         self.commit_stroke(&base, Stroke::Keys(edits), choice, label, None);
     }
 
@@ -422,7 +435,9 @@ impl Window {
 
     fn nudge_time(&mut self, later: bool) {
         let Some(base) = self.key_base() else { return };
-        let Some((joint, secs)) = base.choice.rows().find_map(|(joint, times)| Some((joint, *times.first()?))) else {
+        let Some((joint, secs)) =
+            base.choice.rows().find_map(|(joint, times)| Some((joint, *times.first()?)))
+        else {
             return;
         };
         let step = 1.0 / base.clip.grid.rate.max(1e-6);
@@ -446,11 +461,15 @@ impl Window {
             (Some((joint, secs)), _) => {
                 KeyDrag::Move { grip: Grip { joint, secs, line }, by_secs: 0.0, by_deg }
             }
-            (None, Some(joint)) => KeyDrag::Push { grip: Grip { joint, secs: now, line }, by_deg, reach_secs },
+            (None, Some(joint)) => {
+                KeyDrag::Push { grip: Grip { joint, secs: now, line }, by_deg, reach_secs }
+            }
             (None, None) => return,
         };
         if !base.measure(self.bench.session.joint.unwrap_or_default()).can_move() {
-            self.tell(Message::done("These curves can't be moved: look at plane angles, or swing and twist".to_owned()));
+            self.tell(Message::done(
+                "These curves can't be moved: look at plane angles, or swing and twist".to_owned(),
+            ));
             return;
         }
         let (stroke, choice) = base.stroke(&drag);
@@ -471,7 +490,8 @@ impl Window {
         }
         let drag = KeyDrag::Scale { about_secs: first, factor: (wanted - first) / (last - first) };
         let (stroke, choice) = base.stroke(&drag);
-        let label = format!("Draw {} {}", counted(base.choice.len(), "key"), if out { "out" } else { "together" });
+        let label =
+            format!("Draw {} {}", counted(base.choice.len(), "key"), if out { "out" } else { "together" });
         self.commit_stroke(&base, stroke, choice, label, Some(3));
     }
 
@@ -517,7 +537,9 @@ impl Window {
     }
 
     fn set_path(&mut self, kind: PathKind) {
-        self.change_segments(&format!("Path: {}", kind.name()), |_, starts| vec![KeyChange::Path(starts, kind)]);
+        self.change_segments(&format!("Path: {}", kind.name()), |_, starts| {
+            vec![KeyChange::Path(starts, kind)]
+        });
     }
 
     fn set_spacing(&mut self, spacing: Spacing) {
@@ -542,12 +564,19 @@ impl Window {
         });
     }
 
-    /// Where smoothing and reduction act: over the chosen keys, else over the loop, else everywhere; on the chosen joints.
+    /// Where smoothing and reduction act: over the chosen keys, else over the chosen stretch of time or the loop, else everywhere; on
+    /// the chosen joints.
     fn range_scope(&self) -> Scope {
         let session = &self.bench.session;
         let chosen = session.curves.keys.span().filter(|[first, last]| last > first);
-        let span_secs = chosen.or(session.playback.range.map(|(from, to)| [from, to]));
+        let span_secs = chosen.or_else(|| self.chosen_span());
         Scope { span_secs, ..Scope::of_joints(session.joints()) }
+    }
+
+    /// The chosen stretch of time, else the loop.
+    fn chosen_span(&self) -> Option<[f64; 2]> {
+        let session = &self.bench.session;
+        session.choice.span_secs.or(session.playback.range.map(|(from, to)| [from, to]))
     }
 
     fn add_pass(&mut self, step: PassStep) {
@@ -573,9 +602,7 @@ impl Window {
     fn zoom_values(&mut self, factor: f64, up: f64) {
         let session = &self.bench.session;
         let sets = self.bench.curve_sets();
-        let Some([low, high]) =
-            session.curves.values.or_else(|| fitted_values(&sets, session.window))
-        else {
+        let Some([low, high]) = session.curves.values.or_else(|| fitted_values(&sets, session.window)) else {
             return;
         };
         let (middle, span) = (f64::midpoint(low, high), (high - low) * factor);
@@ -629,12 +656,11 @@ fn edit_of(work: usize, own: &ClipWork, base: &Clip, stroke: &Stroke) -> Edit {
 /// what was moved or taken away in one pass is a row again for the next.
 fn goes_on(base: &Clip, known: &[KeyEdit], more: &[KeyEdit]) -> bool {
     let has_rows = |joint: usize| {
-        base.rotation(joint).is_some_and(|track| {
-            track.stored != Stored::Rotors && track.keys.len() >= base.grid.count()
-        })
+        base.rotation(joint)
+            .is_some_and(|track| track.stored != Stored::Rotors && track.keys.len() >= base.grid.count())
     };
     let moves = |edit: &KeyEdit| matches!(edit.change, KeyChange::Move(_) | KeyChange::Delete(_));
-    !more.iter().any(|edit| {
-        has_rows(edit.joint) && known.iter().any(|own| own.joint == edit.joint && moves(own))
-    })
+    !more
+        .iter()
+        .any(|edit| has_rows(edit.joint) && known.iter().any(|own| own.joint == edit.joint && moves(own)))
 }

@@ -1,10 +1,9 @@
 //! What a gesture on the curves does to keys: from where keys were and how far they were taken to plain edits.
 
+use std::collections::BTreeSet;
 use std::sync::Arc;
 
-use crate::clip::{
-    Clip, FrameGrid, KeyChange, KeyEdit, Push, PushFrame, RotationTrack, Spacing, Times,
-};
+use crate::clip::{Clip, FrameGrid, KeyChange, KeyEdit, Push, PushFrame, RotationTrack, Spacing, Times};
 use crate::limit::{JointLimit, Limits};
 use crate::rotor::Rotor;
 
@@ -232,7 +231,8 @@ pub fn with_more(edits: &[KeyEdit], more: &[KeyEdit]) -> Vec<KeyEdit> {
         let last = all.iter_mut().rev().find(|own| own.joint == edit.joint);
         let joined = match (last, &edit.change) {
             (Some(KeyEdit { change: KeyChange::Set(known), .. }), KeyChange::Set(new)) => {
-                known.retain(|(secs, _)| new.iter().all(|(own, _)| own != secs));
+                let again: BTreeSet<u64> = new.iter().map(|(secs, _)| secs.to_bits()).collect();
+                known.retain(|(secs, _)| !again.contains(&secs.to_bits()));
                 known.extend(new.iter().copied());
                 true
             }

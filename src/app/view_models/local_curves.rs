@@ -73,7 +73,12 @@ fn touched(stroke: &Stroke, joint: usize) -> Option<[f64; 2]> {
 
 /// The curves of a joint around what a stroke on `base` changes, going on from `known` on the left. `None` where the stroke does
 /// not touch the joint, or too much of it to be worked out within a frame.
-pub fn local_curves(base: &Clip, key: &CurveKey, stroke: &Stroke, known: Option<&CurveSet>) -> Option<LocalCurves> {
+pub fn local_curves(
+    base: &Clip,
+    key: &CurveKey,
+    stroke: &Stroke,
+    known: Option<&CurveSet>,
+) -> Option<LocalCurves> {
     let [first_secs, last_secs] = touched(stroke, key.joint)?;
     let track = base.rotation(key.joint).filter(|track| !track.times.is_empty())?;
     let count = track.times.len();

@@ -12,4 +12,6 @@ pub(crate) use focus::focus_ring;
 pub(crate) use icon::{Icon, paint_icon};
 pub(crate) use plate::{letter_plate, read_out};
 pub(crate) use strip::{hint, strip};
-pub(crate) use time_axis::{TimeAxis, is_quick_click, playhead, scrub_and_zoom, scrub_or_pan, vertical_grid, zoom_time};
+pub(crate) use time_axis::{
+    TimeAxis, is_quick_click, playhead, scrub_and_zoom, scrub_or_pan, vertical_grid, zoom_time,
+};

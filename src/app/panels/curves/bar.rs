@@ -82,7 +82,8 @@ fn words(ui: &mut Ui, scope: &Scope<'_>, text: impl Into<String>) {
 }
 
 fn keys_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
-    let choice = scope.bench.session.curves.keys.clone();
+    let choice = &scope.bench.session.curves.keys;
+    let (count, span) = (choice.len(), choice.span());
     let Some((joint, secs)) = choice.rows().find_map(|(joint, times)| Some((joint, *times.first()?))) else {
         return;
     };
@@ -94,7 +95,7 @@ fn keys_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
     let set = chart.sets.iter().find(|set| set.joint == joint);
     let can_move = set.is_some_and(|set| set.unit == "°");
     let grip = |line: usize| Grip { joint, secs, line };
-    if choice.len() == 1 {
+    if count == 1 {
         let frame = chart.clip.grid.frame(secs + under_way[0]);
         words(ui, scope, format!("Key at frame {frame}"));
         let field = Field {
@@ -122,11 +123,15 @@ fn keys_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
                 suffix: "°",
                 tip: "The number of the key; the others stay",
             };
-            field.show(ui, scope, |to| KeyDrag::Move { grip: grip(index), by_secs: 0.0, by_deg: to - before });
+            field.show(ui, scope, |to| KeyDrag::Move {
+                grip: grip(index),
+                by_secs: 0.0,
+                by_deg: to - before,
+            });
         }
         return;
     }
-    words(ui, scope, counted(choice.len(), "key"));
+    words(ui, scope, counted(count, "key"));
     words(ui, scope, "shift");
     let field = Field {
         label: "Shift keys by",
@@ -137,7 +142,7 @@ fn keys_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
         tip: "Moves the chosen keys in time",
     };
     field.show(ui, scope, |to| KeyDrag::Move { grip: grip(line), by_secs: to, by_deg: 0.0 });
-    if let Some([first, last]) = choice.span()
+    if let Some([first, last]) = span
         && last > first
     {
         words(ui, scope, "scale");
@@ -181,7 +186,8 @@ fn segment_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
     let mut chosen = kind;
     let combo = ComboBox::from_id_salt("path kind").selected_text(kind.name()).width(74.0);
     let response = combo.show_ui(ui, |ui| {
-        for own in PathKind::ALL.into_iter().filter(|own| *own != PathKind::Cubic || kind == PathKind::Cubic) {
+        for own in PathKind::ALL.into_iter().filter(|own| *own != PathKind::Cubic || kind == PathKind::Cubic)
+        {
             ui.selectable_value(&mut chosen, own, own.name());
         }
     });
@@ -227,7 +233,11 @@ fn segment_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
     });
     let peak = track.highest_rate(segment);
     let turns = own.turn.whole();
-    let turns = if turns == 0 { String::new() } else { format!("{turns:+} turn{} · ", if turns.abs() == 1 { "" } else { "s" }) };
+    let turns = if turns == 0 {
+        String::new()
+    } else {
+        format!("{turns:+} turn{} · ", if turns.abs() == 1 { "" } else { "s" })
+    };
     let rate = peak.rate_rad.to_degrees();
     words(ui, scope, format!("{turns}at most {rate:.0}°/s at {}", seconds(peak.time_secs)));
 }
@@ -262,9 +272,10 @@ fn tools_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         scope.out.push(Command::Curve(CurveCommand::SetReduction(degrees)));
     }
     let session = &scope.bench.session;
-    let range = match session.playback.range {
-        Some((from, to)) => format!("over the loop, {} to {}", seconds(from), seconds(to)),
-        None => "over the whole clip".to_owned(),
+    let range = match (session.choice.span_secs, session.playback.range) {
+        (Some([from, to]), _) => format!("over the choice, {} to {}", seconds(from), seconds(to)),
+        (None, Some((from, to))) => format!("over the loop, {} to {}", seconds(from), seconds(to)),
+        (None, None) => "over the whole clip".to_owned(),
     };
     words(ui, scope, range);
 }

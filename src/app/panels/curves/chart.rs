@@ -144,8 +144,11 @@ impl Chart<'_> {
 
     /// Whether the joint has a key at about each frame there.
     pub(super) fn is_dense(&self, joint: usize, secs: f64) -> bool {
+        /// Slower than this nothing is captured: such keys were set by hand, and their clip is counted in them.
+        const LONGEST_SECS: f64 = 0.1;
         let rate = self.clip.grid.rate;
-        self.segment(joint, secs).is_some_and(|[start, end]| (end - start) * rate < 1.5)
+        let is_dense = |length: f64| length * rate < 1.5 && length < LONGEST_SECS;
+        self.segment(joint, secs).is_some_and(|[start, end]| is_dense(end - start))
     }
 
     /// Chosen keys in a rectangle on screen.

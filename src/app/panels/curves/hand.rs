@@ -1,6 +1,8 @@
 //! The pointer on the chart: what a press takes hold of, and what a drag of it does.
 
-use egui::{CursorIcon, Key, Painter, PointerButton, Pos2, Rect, Response, Shape, Stroke, StrokeKind, Ui, Vec2, pos2};
+use egui::{
+    CursorIcon, Key, Painter, PointerButton, Pos2, Rect, Response, Shape, Stroke, StrokeKind, Ui, Vec2, pos2,
+};
 
 use super::super::super::commands::{Command, CurveCommand};
 use super::super::super::theme::Look;
@@ -200,7 +202,10 @@ fn hold_at(chart: &Chart<'_>, at: Pos2, command: bool) -> Hold {
 /// The chosen key nearest to a time.
 fn nearest_chosen(chart: &Chart<'_>, secs: f64) -> Option<Grip> {
     let nearest = |(joint, times): (usize, &[f64])| {
-        let best = times.iter().copied().min_by(|a, b| (a - secs).abs().total_cmp(&(b - secs).abs()))?;
+        let after = times.partition_point(|&own| own < secs);
+        let near =
+            [after.checked_sub(1), Some(after)].into_iter().flatten().filter_map(|place| times.get(place));
+        let best = near.copied().min_by(|a, b| (a - secs).abs().total_cmp(&(b - secs).abs()))?;
         Some(Grip { joint, secs: best, line: 0 })
     };
     let all = chart.choice.rows().filter_map(nearest);
@@ -351,7 +356,8 @@ fn click(chart: &Chart<'_>, press: &CurvePress, scope: &mut Scope<'_>) {
 
 /// The wheel zooms time, over the numbers on the left values, with Alt or during a push its reach.
 fn wheel(ui: &Ui, response: &Response, chart: &Chart<'_>, scope: &mut Scope<'_>, is_held: bool) {
-    let Some(at) = response.hover_pos().or(ui.input(|input| input.pointer.latest_pos()).filter(|_| is_held)) else {
+    let Some(at) = response.hover_pos().or(ui.input(|input| input.pointer.latest_pos()).filter(|_| is_held))
+    else {
         return;
     };
     let (delta, alt) = ui.input(|input| (input.smooth_scroll_delta, input.modifiers.alt));
@@ -366,7 +372,8 @@ fn wheel(ui: &Ui, response: &Response, chart: &Chart<'_>, scope: &mut Scope<'_>,
         if delta.y != 0.0 {
             let factor = (-f64::from(delta.y) / 200.0).exp();
             let middle = chart.values.value(at.y);
-            let bounds = [chart.values.low, chart.values.high].map(|value| middle + (value - middle) * factor);
+            let bounds =
+                [chart.values.low, chart.values.high].map(|value| middle + (value - middle) * factor);
             scope.out.push(Command::Curve(CurveCommand::ShowValues(Some(bounds))));
         }
     } else if !is_held {
@@ -401,13 +408,7 @@ pub(super) fn gesture_ui(ui: &Ui, chart: &Chart<'_>, scope: &Scope<'_>, hover: &
 
 /// How far a push reaches and how it fades: its share as a hill on the ground of the chart.
 fn reach_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, secs: f64, reach_secs: f64, is_held: bool) {
-    let push = Push {
-        joint: 0,
-        center_secs: secs,
-        reach_secs,
-        turn: Bivector::ZERO,
-        frame: PushFrame::Own,
-    };
+    let push = Push { joint: 0, center_secs: secs, reach_secs, turn: Bivector::ZERO, frame: PushFrame::Own };
     let plot = chart.plot;
     let height = if is_held { plot.height() * 0.30 } else { plot.height() * 0.16 };
     let [left, right] = [secs - reach_secs, secs + reach_secs].map(|secs| chart.axis.x(secs));

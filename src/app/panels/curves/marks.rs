@@ -3,7 +3,9 @@
 use egui::{Align2, Color32, FontId, Painter, Pos2, Rangef, Rect, Shape, Stroke, Ui, pos2, vec2};
 
 use super::super::super::theme::{INSET, Look};
-use super::super::super::view_models::{Ceiling, CurveLine, CurveSet, Pyramid, SnagState, degrees_fixed, seconds};
+use super::super::super::view_models::{
+    Ceiling, CurveLine, CurveSet, Pyramid, SnagState, degrees_fixed, seconds,
+};
 use super::super::super::widgets::{TimeAxis, letter_plate, read_out};
 use super::super::Scope;
 use super::chart::Chart;
@@ -28,7 +30,8 @@ pub(super) fn bands_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
         };
         let level = |value: f64, is_top: bool| {
             let y = chart.values.y(value);
-            let rows = if is_top { Rangef::new(plot.top() - 8.0, y) } else { Rangef::new(y, plot.bottom() + 4.0) };
+            let rows =
+                if is_top { Rangef::new(plot.top() - 8.0, y) } else { Rangef::new(y, plot.bottom() + 4.0) };
             if rows.span() > 0.0 {
                 painter.rect_filled(Rect::from_x_y_ranges(plot.x_range(), rows), 0.0, fill);
                 painter.hline(plot.x_range(), y, stroke);
@@ -52,7 +55,8 @@ pub(super) fn bands_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
                     let Some(value) = value.filter(|value| value.is_finite()) else { continue };
                     let at = pos2(x, chart.values.y(value).max(top));
                     if let Some(before) = last {
-                        let cell = Rect::from_min_max(pos2(before.x, top), pos2(x, f32::midpoint(before.y, at.y)));
+                        let cell =
+                            Rect::from_min_max(pos2(before.x, top), pos2(x, f32::midpoint(before.y, at.y)));
                         mesh.add_colored_rect(cell, fill);
                         painter.line_segment([before, at], stroke);
                     } else if at.y > top + 12.0 {
@@ -140,7 +144,13 @@ pub(super) fn segment_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, segm
 }
 
 /// Where the joints' snags lie: a bar along the top with the kind's letter, and faint edges down the chart.
-pub(super) fn snag_spans_ui(painter: &Painter, axis: &TimeAxis, plot: Rect, joints: &[usize], scope: &Scope<'_>) {
+pub(super) fn snag_spans_ui(
+    painter: &Painter,
+    axis: &TimeAxis,
+    plot: Rect,
+    joints: &[usize],
+    scope: &Scope<'_>,
+) {
     let look = &scope.look;
     let chosen = scope.bench.session.snag;
     let mut last_x = f32::NEG_INFINITY;
@@ -181,7 +191,8 @@ pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
     let font = FontId::proportional(12.0);
     let mut places: Vec<(f32, String, Color32)> = Vec::new();
     for set in chart.sets {
-        let joint = if several { format!("{} ", short(chart.clip.skeleton.label(set.joint))) } else { String::new() };
+        let joint =
+            if several { format!("{} ", short(chart.clip.skeleton.label(set.joint))) } else { String::new() };
         for (index, line) in set.lines.iter().enumerate() {
             let value = chart.value(set, index, chart.axis.window.end_secs);
             let y = value.map(|value| chart.values.y(value)).filter(|y| y.is_finite());

@@ -59,7 +59,10 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         return;
     }
     if sets.iter().all(|set| set.lines.is_empty()) {
-        hint(ui, "The file turns this joint nowhere: it stays at its rest pose. Insert puts a key at the playhead");
+        hint(
+            ui,
+            "The file turns this joint nowhere: it stays at its rest pose. Insert puts a key at the playhead",
+        );
         return;
     }
     let whole = ui.available_rect_before_wrap();

@@ -4,10 +4,10 @@ use egui::{Align2, FontId, Key, Rect, Role, Sense, Shape, Stroke, StrokeKind, Ui
 
 use super::super::super::commands::{Command, CurveCommand};
 use super::super::super::view_models::KeyDrag;
+use super::super::super::view_models::{Stroke as HandStroke, key_at};
 use super::super::Scope;
 use super::chart::Chart;
 use crate::clip::{KeyChange, Spacing};
-use super::super::super::view_models::{Stroke as HandStroke, key_at};
 
 /// A step of a handle by an arrow key.
 const STEP: f64 = 0.02;
@@ -91,10 +91,8 @@ pub(super) fn spacing_ui(ui: &Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
             };
             ui.memory_mut(|memory| memory.set_focus_lock_filter(id, filter));
             let count = |key| ui.input(|input| f64::from(input.num_presses(key) as u32));
-            let step = [
-                count(Key::ArrowRight) - count(Key::ArrowLeft),
-                count(Key::ArrowUp) - count(Key::ArrowDown),
-            ];
+            let step =
+                [count(Key::ArrowRight) - count(Key::ArrowLeft), count(Key::ArrowUp) - count(Key::ArrowDown)];
             if step != [0.0, 0.0] {
                 let drag = changed([point[0] + step[0] * STEP, point[1] + step[1] * STEP]);
                 scope.out.push(Command::Curve(CurveCommand::Settle(drag)));

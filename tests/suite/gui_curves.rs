@@ -1,0 +1,707 @@
+//! Editing on the rotation curves, by pointer and by keyboard; what is asserted is the document and what it plays.
+
+use std::path::PathBuf;
+use std::sync::Arc;
+
+use egui::{Event, Key, Modifiers, PointerButton, Pos2, Vec2, vec2};
+use egui_kittest::Harness;
+use egui_kittest::kittest::{NodeT as _, Queryable as _};
+use glam::DVec3;
+use turnwright::app::commands::{Action, Command, CurveAction, CurveCommand};
+use turnwright::app::paint::CpuRenderer;
+use turnwright::app::view_models::{CurveView, KeyChoice, TimeWindow, seconds};
+use turnwright::app::{Screen as _, Start, Window};
+use turnwright::clip::{Clip, FrameGrid, JointTracks, PathKind, RotationTrack, Spacing, Times};
+use turnwright::exchange::{ClipAddress, disk, gltf};
+use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
+use turnwright::rotor::{Bivector, Rotor};
+use turnwright::scene::{Edit, PassStep};
+use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
+
+use crate::support::shared;
+
+/// A window on one clip of its own.
+struct Desk<'a> {
+    harness: Harness<'a, Option<Window>>,
+    _folder: tempfile::TempDir,
+}
+
+const ARM: &str = "LeftArm";
+
+/// A trunk with a key each frame (30 a second) and two arms with a key each half second: the left one rises in plane yz to 40° and
+/// comes down, the right one hangs.
+fn figure() -> Clip {
+    let joint = |name: &str, number, parent, place: [f64; 3]| Joint {
+        name: name.to_owned(),
+        number,
+        parent,
+        rest: Transform::from_translation(DVec3::from_array(place)),
+        kind: JointKind::Joint,
+        tips: vec![],
+    };
+    let joints = vec![
+        joint("Trunk", 0, None, [0.0, 1.0, 0.0]),
+        joint(ARM, 1, Some(0), [0.3, 0.4, 0.0]),
+        joint("LeftHand", 2, Some(1), [0.5, 0.0, 0.0]),
+        joint("RightArm", 3, Some(0), [-0.3, 0.4, 0.0]),
+        joint("RightHand", 4, Some(3), [-0.5, 0.0, 0.0]),
+    ];
+    let turn = |degrees: [f64; 3]| Rotor::from_plane_angles(Bivector::from_degrees(degrees));
+    let track = |times: Vec<f64>, turns: Vec<[f64; 3]>| JointTracks {
+        rotation: Some(RotationTrack::from_rotors(
+            Times::Listed(times.into()),
+            turns.into_iter().map(turn).collect::<Vec<_>>(),
+        )),
+        ..JointTracks::default()
+    };
+    let frames: Vec<f64> = (0..=60).map(|frame| f64::from(frame) / 30.0).collect();
+    let sway = frames.iter().map(|secs| [0.0, 10.0 * (secs * 3.0).sin(), 0.0]).collect();
+    let halves: Vec<f64> = (0..=4).map(|half| f64::from(half) / 2.0).collect();
+    let rise = [0.0, 20.0, 40.0, 20.0, 0.0].map(|degrees| [degrees, 0.0, 0.0]).to_vec();
+    let joints_tracks = vec![
+        track(frames, sway),
+        track(halves.clone(), rise),
+        JointTracks::default(),
+        track(halves, vec![[0.0; 3]; 5]),
+        JointTracks::default(),
+    ];
+    Clip {
+        name: "rise".to_owned(),
+        skeleton: Arc::new(Skeleton::new(joints).unwrap()),
+        joints: joints_tracks.into_iter().map(Arc::new).collect(),
+        grid: FrameGrid::even(30.0, 2.0),
+        duration_secs: 2.0,
+    }
+}
+
+impl Desk<'_> {
+    /// The figure, its left arm chosen.
+    fn new() -> Self {
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("rise.glb");
+        disk::write(&path, &gltf::from_clip(&figure(), "rise").unwrap().bytes).unwrap();
+        let mut desk = Self::open(path, folder);
+        desk.choose(ARM);
+        desk
+    }
+
+    fn open(path: PathBuf, folder: tempfile::TempDir) -> Self {
+        Self::of_size(path, folder, [1440.0, 900.0])
+    }
+
+    fn of_size(path: PathBuf, folder: tempfile::TempDir, size: [f32; 2]) -> Self {
+        let start = Start::Files(vec![ClipAddress { path, clip: None }]);
+        let harness = Harness::builder().with_size(size).renderer(CpuRenderer::new(2)).build_ui_state(
+            move |ui, window: &mut Option<Window>| {
+                let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
+                window.logic(ui.ctx());
+                window.ui(ui);
+            },
+            None,
+        );
+        let mut desk = Self { harness, _folder: folder };
+        desk.run();
+        desk
+    }
+
+    fn run(&mut self) {
+        self.harness.run_steps(4);
+    }
+
+    fn window(&self) -> &Window {
+        self.harness.state().as_ref().expect("the window is made in the first frame")
+    }
+
+    fn ask(&mut self, command: Command) {
+        self.harness.state_mut().as_mut().expect("a window").ask(command);
+        self.run();
+    }
+
+    fn act(&mut self, action: CurveAction) {
+        self.ask(Command::Do(Action::Curve(action)));
+    }
+
+    fn press(&mut self, modifiers: Modifiers, key: Key) {
+        self.harness.key_press_modifiers(modifiers, key);
+        self.run();
+    }
+
+    fn joint(&self, name: &str) -> usize {
+        let clip = self.window().bench().result().unwrap();
+        clip.skeleton.find(name).unwrap_or_else(|| panic!("a joint {name}"))
+    }
+
+    fn choose(&mut self, name: &str) {
+        let joint = self.joint(name);
+        self.ask(Command::ChooseJoint(Some(joint)));
+    }
+
+    fn track(&self, name: &str) -> RotationTrack {
+        let joint = self.joint(name);
+        self.window().bench().result().unwrap().rotation(joint).unwrap().clone()
+    }
+
+    fn times(&self, name: &str) -> Vec<f64> {
+        self.track(name).times.iter().map(|secs| (secs * 1e4).round() / 1e4).collect()
+    }
+
+    /// Plane angles in degrees.
+    fn degrees(&self, name: &str, secs: f64) -> [f64; 3] {
+        self.track(name).at(secs).plane_angles().to_degrees()
+    }
+
+    fn passes(&self) -> Vec<PassStep> {
+        let passes = &self.window().bench().work().unwrap().passes;
+        passes.iter().map(|pass| pass.step.clone()).collect()
+    }
+
+    fn steps(&self) -> usize {
+        self.window().bench().project.as_ref().unwrap().history.steps().1
+    }
+
+    fn chosen(&self) -> usize {
+        self.window().bench().session.curves.keys.len()
+    }
+
+    /// Where a key's pip is.
+    #[track_caller]
+    fn pip(&self, joint: &str, secs: f64, line: &str) -> Pos2 {
+        let label = format!("Key of {joint} at {}, {line}", seconds(secs));
+        self.harness.get_by_label(&label).rect().center()
+    }
+
+    fn hold(&mut self, modifiers: Modifiers) {
+        self.harness.event(Event::ModifiersChanged(modifiers));
+        self.harness.step();
+    }
+
+    /// A drag with stops on the way, so that it is seen while it lasts; `midway` looks at the window before it is let go.
+    fn drag(&mut self, from: Pos2, by: Vec2, modifiers: Modifiers, midway: impl FnOnce(&mut Self)) {
+        self.hold(modifiers);
+        let button =
+            |pos, pressed| Event::PointerButton { pos, button: PointerButton::Primary, pressed, modifiers };
+        self.harness.hover_at(from);
+        self.harness.step();
+        self.harness.event(button(from, true));
+        self.harness.step();
+        for share in [0.25, 0.5, 1.0] {
+            self.harness.hover_at(from + by * share);
+            self.harness.step();
+        }
+        self.harness.run_steps(2);
+        midway(self);
+        self.harness.event(button(from + by, false));
+        self.harness.step();
+        self.hold(Modifiers::NONE);
+        self.run();
+    }
+
+    /// Points on screen for a degree, and for a second.
+    fn scale(&self) -> Vec2 {
+        let [low, high] = [self.pip(ARM, 0.0, "yz"), self.pip(ARM, 1.0, "yz")];
+        vec2(high.x - low.x, (high.y - low.y) / 40.0)
+    }
+
+    fn click_at(&mut self, at: Pos2, modifiers: Modifiers) {
+        self.drag(at, Vec2::ZERO, modifiers, |_| {});
+    }
+}
+
+#[track_caller]
+fn assert_near(found: f64, expected: f64, within: f64) {
+    assert!((found - expected).abs() <= within, "expected {expected} within {within}, found {found}");
+}
+
+#[test]
+fn a_key_is_dragged_in_value_as_one_step_and_shows_while_it_goes() {
+    let mut desk = Desk::new();
+    let (at, up) = (desk.pip(ARM, 1.0, "yz"), desk.scale().y * 10.0);
+    let before = desk.steps();
+    desk.drag(at, vec2(0.0, up), Modifiers::NONE, |desk| {
+        assert!(desk.passes().is_empty() && desk.steps() == before, "nothing is recorded yet");
+        assert_near(desk.degrees(ARM, 1.0)[0], 50.0, 0.3);
+        let shown = desk.window().bench().curve_hand.shown.as_ref().expect("drawn at once");
+        assert_eq!(shown.locals.len(), 1);
+        assert_near(shown.locals[0].value(0, 1.0).unwrap(), 50.0, 0.3);
+    });
+    assert_eq!(desk.steps(), before + 1);
+    assert!(
+        matches!(desk.passes().as_slice(), [PassStep::Keys(keys)] if keys.edits.len() == 1),
+        "{:?}",
+        desk.passes()
+    );
+    let [yz, zx, xy] = desk.degrees(ARM, 1.0);
+    assert_near(yz, 50.0, 0.3);
+    assert!(zx.abs() < 1e-6 && xy.abs() < 1e-6, "one number moves alone: {zx} {xy}");
+    assert_near(desk.degrees(ARM, 0.5)[0], 20.0, 1e-4);
+    desk.press(Modifiers::COMMAND, Key::Z);
+    assert_near(desk.degrees(ARM, 1.0)[0], 40.0, 1e-4);
+    let label = desk.window().bench().project.as_ref().unwrap().history.redo_label().unwrap().to_owned();
+    assert!(label.starts_with("Turn 1 key by +"), "{label}");
+}
+
+#[test]
+fn keys_are_dragged_in_time_onto_frames_and_finely_with_shift() {
+    let mut desk = Desk::new();
+    let (at, second) = (desk.pip(ARM, 1.0, "yz"), desk.scale().x);
+    desk.drag(at, vec2(second * 0.21, 0.0), Modifiers::NONE, |_| {});
+    assert_eq!(desk.times(ARM), [0.0, 0.5, 1.2, 1.5, 2.0], "six frames of a thirtieth");
+    assert_near(desk.degrees(ARM, 1.2)[0], 40.0, 1e-4);
+    // Without snapping, and a tenth of the way.
+    desk.act(CurveAction::Snap);
+    let at = desk.pip(ARM, 1.2, "yz");
+    desk.drag(at, vec2(second * 0.5, 0.0), Modifiers::SHIFT, |_| {});
+    assert_near(desk.times(ARM)[2], 1.25, 0.004);
+    // Both are one edit of one pass: the key that was moved goes on.
+    let [PassStep::Keys(keys)] = desk.passes().try_into().unwrap() else { panic!("one pass of keys") };
+    assert_eq!(keys.edits.len(), 1, "{keys:?}");
+}
+
+#[test]
+fn escape_gives_a_drag_up() {
+    let mut desk = Desk::new();
+    let (at, steps) = (desk.pip(ARM, 1.0, "yz"), desk.steps());
+    desk.drag(at, vec2(0.0, -60.0), Modifiers::NONE, |desk| desk.press(Modifiers::NONE, Key::Escape));
+    assert_eq!((desk.steps(), desk.passes().len()), (steps, 0));
+    assert_near(desk.degrees(ARM, 1.0)[0], 40.0, 1e-4);
+}
+
+#[test]
+fn keys_are_chosen_by_click_shift_box_lane_and_keyboard() {
+    let mut desk = Desk::new();
+    desk.click_at(desk.pip(ARM, 0.5, "yz"), Modifiers::NONE);
+    assert_eq!(desk.chosen(), 1);
+    desk.click_at(desk.pip(ARM, 1.5, "yz"), Modifiers::SHIFT);
+    assert_eq!(desk.chosen(), 2);
+    desk.click_at(desk.pip(ARM, 0.5, "yz"), Modifiers::SHIFT);
+    let choice = desk.window().bench().session.curves.keys.clone();
+    assert_eq!(choice.times(desk.joint(ARM)), [1.5]);
+    // A box over the two keys in the middle of the rise.
+    let (from, to) = (desk.pip(ARM, 0.5, "yz"), desk.pip(ARM, 1.0, "yz"));
+    let corner = from + vec2(-20.0, 12.0);
+    desk.drag(corner, to + vec2(20.0, -12.0) - corner, Modifiers::COMMAND, |_| {});
+    let choice = desk.window().bench().session.curves.keys.clone();
+    assert_eq!(choice.times(desk.joint(ARM)), [0.5, 1.0]);
+    // Along the lane below: all keys of a stretch of time.
+    let chart = desk.harness.get_by_label("Rotation curves chart").rect();
+    let lane = Pos2::new(to.x - 20.0, chart.bottom() - 6.0);
+    desk.act(CurveAction::ChooseNone);
+    desk.drag(lane, vec2(desk.scale().x * 0.7, 0.0), Modifiers::NONE, |_| {});
+    let choice = desk.window().bench().session.curves.keys.clone();
+    assert_eq!(choice.times(desk.joint(ARM)), [1.0, 1.5]);
+    desk.press(Modifiers::COMMAND, Key::A);
+    assert_eq!(desk.chosen(), 5);
+    desk.press(Modifiers::COMMAND | Modifiers::SHIFT, Key::A);
+    assert_eq!(desk.chosen(), 0);
+    desk.ask(Command::Scrub(1.0));
+    desk.press(Modifiers::ALT, Key::Insert);
+    assert_eq!(desk.chosen(), 1);
+}
+
+#[test]
+fn keys_are_added_and_deleted_by_the_keyboard() {
+    let mut desk = Desk::new();
+    desk.ask(Command::Scrub(0.8));
+    let before: Vec<Rotor> = (0..=40).map(|i| desk.track(ARM).at(f64::from(i) / 20.0)).collect();
+    desk.press(Modifiers::NONE, Key::Insert);
+    assert_eq!(desk.times(ARM), [0.0, 0.5, 0.8, 1.0, 1.5, 2.0]);
+    for (i, before) in before.iter().enumerate() {
+        let after = desk.track(ARM).at(i as f64 / 20.0);
+        assert!(before.turn_to(after) < 1e-6, "a new key keeps the curve at {i}");
+    }
+    assert_eq!(desk.chosen(), 1, "the new key is chosen");
+    desk.press(Modifiers::NONE, Key::Delete);
+    assert_eq!(desk.times(ARM), [0.0, 0.5, 1.0, 1.5, 2.0]);
+    assert_eq!(desk.steps(), 2);
+}
+
+#[test]
+fn keys_are_copied_pasted_and_pasted_mirrored() {
+    let mut desk = Desk::new();
+    let joint = desk.joint(ARM);
+    let mut keys = KeyChoice::default();
+    keys.add(joint, [0.5, 1.0]);
+    desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+    desk.press(Modifiers::COMMAND, Key::C);
+    desk.ask(Command::Scrub(1.6));
+    desk.press(Modifiers::COMMAND, Key::V);
+    assert_eq!(desk.times(ARM), [0.0, 0.5, 1.0, 1.5, 1.6, 2.0, 2.1]);
+    assert_near(desk.degrees(ARM, 1.6)[0], 20.0, 1e-4);
+    assert_near(desk.degrees(ARM, 2.1)[0], 40.0, 1e-4);
+    desk.press(Modifiers::COMMAND, Key::Z);
+    // The desktop's own event for pasting, as a real window sends it, with Shift held: the other side.
+    desk.ask(Command::Scrub(0.5));
+    desk.hold(Modifiers::COMMAND | Modifiers::SHIFT);
+    desk.harness.event(Event::Paste(String::new()));
+    desk.harness.step();
+    desk.hold(Modifiers::NONE);
+    desk.run();
+    // A turn within plane yz, square to the way across, is its own mirror image.
+    assert_near(desk.degrees("RightArm", 1.0)[0], 40.0, 1e-4);
+    assert_near(desk.degrees(ARM, 1.0)[0], 40.0, 1e-4);
+    assert_eq!(desk.window().bench().session.joint, Some(desk.joint("RightArm")), "what was pasted is shown");
+}
+
+#[test]
+fn a_turn_out_of_its_plane_is_mirrored_the_other_way_round() {
+    let mut desk = Desk::new();
+    desk.ask(Command::Scrub(1.0));
+    desk.act(CurveAction::NextLine);
+    for _ in 0..9 {
+        desk.press(Modifiers::COMMAND | Modifiers::ALT, Key::ArrowUp);
+    }
+    // Nothing was chosen: the keys pushed softly. Undone, with the key chosen they turn it.
+    assert!(matches!(desk.passes().as_slice(), [PassStep::Push(_)]));
+    assert_eq!(desk.steps(), 1, "one run of the same key is one step");
+    desk.press(Modifiers::COMMAND, Key::Z);
+    desk.act(CurveAction::ChooseHere);
+    for _ in 0..9 {
+        desk.press(Modifiers::COMMAND | Modifiers::ALT, Key::ArrowUp);
+    }
+    assert_eq!(desk.steps(), 1);
+    assert_near(desk.degrees(ARM, 1.0)[1], 9.0, 1e-4);
+    desk.press(Modifiers::COMMAND, Key::C);
+    desk.act(CurveAction::PasteMirrored);
+    let [yz, zx, _] = desk.degrees("RightArm", 1.0);
+    assert_near(yz, 40.0, 1e-3);
+    assert_near(zx, -9.0, 1e-3);
+}
+
+#[test]
+fn keys_are_shifted_and_scaled_in_time_by_bracket_keyboard_and_number() {
+    let mut desk = Desk::new();
+    let joint = desk.joint(ARM);
+    let mut keys = KeyChoice::default();
+    keys.add(joint, [0.5, 1.0]);
+    desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+    let bracket = desk.harness.get_by_label_contains("Last chosen key").rect().center();
+    desk.drag(bracket, vec2(desk.scale().x * 0.3, 0.0), Modifiers::NONE, |_| {});
+    assert_eq!(desk.times(ARM), [0.0, 0.5, 1.3, 1.5, 2.0]);
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::ArrowLeft);
+    assert_near(desk.times(ARM)[2], 1.3 - 1.0 / 30.0, 1e-3);
+    desk.press(Modifiers::COMMAND | Modifiers::ALT, Key::ArrowLeft);
+    desk.press(Modifiers::COMMAND | Modifiers::ALT, Key::ArrowLeft);
+    assert_near(desk.times(ARM)[1], 0.5 - 2.0 / 30.0, 1e-3);
+    let steps = desk.steps();
+    // Typed: a tenth of a second later.
+    desk.harness.get_by_label("Shift keys by").click();
+    desk.run();
+    let field = desk.harness.get_by_label("Shift keys by");
+    field.type_text("0.1");
+    desk.run();
+    desk.press(Modifiers::NONE, Key::Enter);
+    assert_eq!(desk.steps(), steps + 1);
+    assert_near(desk.times(ARM)[1], 0.6 - 2.0 / 30.0, 1e-3);
+}
+
+#[test]
+fn the_numbers_of_a_key_are_typed() {
+    let mut desk = Desk::new();
+    desk.click_at(desk.pip(ARM, 1.0, "yz"), Modifiers::NONE);
+    for (label, text) in [("Key zx", "12.5"), ("Key time", "1.1")] {
+        desk.harness.get_by_label(label).click();
+        desk.run();
+        desk.press(Modifiers::COMMAND, Key::A);
+        desk.harness.get_by_label(label).type_text(text);
+        desk.run();
+        desk.press(Modifiers::NONE, Key::Enter);
+    }
+    assert_eq!(desk.times(ARM), [0.0, 0.5, 1.1, 1.5, 2.0]);
+    let [yz, zx, xy] = desk.degrees(ARM, 1.1);
+    assert_near(yz, 40.0, 1e-3);
+    assert_near(zx, 12.5, 1e-3);
+    assert_near(xy, 0.0, 1e-3);
+}
+
+#[test]
+fn several_joints_are_edited_at_once() {
+    let mut desk = Desk::new();
+    let node = desk.harness.get_by_label("Map row RightArm");
+    node.click_modifiers(Modifiers::COMMAND);
+    desk.run();
+    let (left, right) = (desk.joint(ARM), desk.joint("RightArm"));
+    assert_eq!(desk.window().bench().session.joints(), [left, right]);
+    assert_eq!(desk.window().bench().curve_sets().len(), 2);
+    let mut keys = KeyChoice::default();
+    keys.add(left, [0.5]);
+    keys.add(right, [0.5]);
+    desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+    let (at, up) = (desk.pip(ARM, 0.5, "yz"), desk.scale().y * 15.0);
+    desk.drag(at, vec2(0.0, up), Modifiers::NONE, |_| {});
+    assert_eq!(desk.steps(), 1);
+    assert_near(desk.degrees(ARM, 0.5)[0], 35.0, 0.4);
+    assert_near(desk.degrees("RightArm", 0.5)[0], 15.0, 0.4);
+    // A plain click chooses one alone again.
+    desk.harness.get_by_label("Map row RightArm").click();
+    desk.run();
+    assert_eq!(desk.window().bench().session.joints(), [right]);
+    desk.press(Modifiers::COMMAND | Modifiers::SHIFT, Key::ArrowUp);
+    assert_eq!(desk.window().bench().session.joints().len(), 2);
+}
+
+#[test]
+fn a_segment_gets_path_spacing_and_turns() {
+    let mut desk = Desk::new();
+    // A click on the curve between two keys.
+    let middle = desk.pip(ARM, 0.5, "yz").lerp(desk.pip(ARM, 1.0, "yz"), 0.4);
+    desk.click_at(middle, Modifiers::NONE);
+    let joint = desk.joint(ARM);
+    assert_eq!(desk.window().bench().session.curves.segment, Some((joint, 0.5)));
+    let segment = |desk: &Desk<'_>| {
+        let track = desk.track(ARM);
+        (track.kind_of(1, None), track.segments.of(1).spacing, track.segments.of(1).turn.whole())
+    };
+    for (key, kind) in [
+        (Key::H, PathKind::Hold),
+        (Key::Q, PathKind::Squad),
+        (Key::P, PathKind::Spline),
+        (Key::B, PathKind::BSpline),
+        (Key::S, PathKind::Slerp),
+    ] {
+        desk.press(Modifiers::ALT | Modifiers::SHIFT, key);
+        assert_eq!(segment(&desk).0, kind);
+        assert_eq!(desk.track(ARM).kind_of(0, None), PathKind::Slerp, "the others stay");
+    }
+    for (key, spacing) in [
+        (Key::I, Spacing::EaseIn),
+        (Key::O, Spacing::EaseOut),
+        (Key::U, Spacing::EaseBoth),
+        (Key::E, Spacing::Even),
+    ] {
+        desk.press(Modifiers::ALT | Modifiers::SHIFT, key);
+        assert_eq!(segment(&desk).1, spacing);
+    }
+    desk.harness.get_by_label("One turn more").click();
+    desk.run();
+    assert_eq!(segment(&desk).2, 1);
+    // 380° in half a second; the bar says so.
+    assert_near(desk.track(ARM).highest_rate(1).rate_rad.to_degrees(), 760.0, 0.1);
+    desk.harness.get_by_label_contains("at most 760°/s");
+    desk.harness.get_by_label("Go the other way round").click();
+    desk.run();
+    assert_eq!(segment(&desk).2, -2, "as many whole turns and one, less the short way, the other way");
+    assert_near(desk.track(ARM).highest_rate(1).rate_rad.to_degrees(), 2.0 * 700.0, 0.1);
+    desk.harness.get_by_label("Go the other way round").click();
+    desk.run();
+    desk.harness.get_by_label("One turn less").click();
+    desk.run();
+    assert_eq!(segment(&desk).2, 0);
+}
+
+#[test]
+fn own_handles_of_a_spacing_are_dragged_and_moved_by_arrows() {
+    let mut desk = Desk::new();
+    desk.ask(Command::Scrub(0.7));
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::Insert);
+    let steps = desk.steps();
+    let handle = desk.harness.get_by_label_contains("Spacing handle 1").rect().center();
+    desk.drag(handle, vec2(25.0, 12.0), Modifiers::NONE, |desk| assert_eq!(desk.steps(), steps));
+    assert_eq!(desk.steps(), steps + 1);
+    let spacing = |desk: &Desk<'_>| desk.track(ARM).segments.of(1).spacing;
+    let Spacing::Own(handles) = spacing(&desk) else { panic!("{:?}", spacing(&desk)) };
+    assert!(handles.points()[0][0] > 0.4 && handles.points()[0][1] < 0.3, "{handles:?}");
+    // The orientations are the same, only their moments differ.
+    let (start, end) = (desk.track(ARM).at(0.5), desk.track(ARM).at(1.0));
+    let early = desk.track(ARM).at(0.6);
+    assert!(start.turn_to(early) < 0.2 * start.turn_to(end) && start.turn_to(early) > 0.0);
+    desk.harness.get_by_label_contains("Spacing handle 2").focus();
+    desk.run();
+    desk.press(Modifiers::NONE, Key::ArrowDown);
+    let Spacing::Own(moved) = spacing(&desk) else { panic!("{:?}", spacing(&desk)) };
+    assert!(moved.points()[1][1] < handles.points()[1][1], "{moved:?}");
+}
+
+#[test]
+fn a_captured_curve_is_pushed_softly_and_the_source_stays() {
+    let mut desk = Desk::new();
+    desk.choose("Trunk");
+    desk.ask(Command::Curve(CurveCommand::SetFalloff(0.3)));
+    let source = desk.window().bench().source().unwrap().clone();
+    // Zoomed out so far that no pips are in the way; the middle of the clip, on the curve of plane zx.
+    let window = TimeWindow { start_secs: 0.0, end_secs: 2.0 };
+    desk.ask(Command::ShowTime(window));
+    desk.ask(Command::Curve(CurveCommand::ShowValues(Some([-40.0, 40.0]))));
+    let chart = desk.harness.get_by_label("Rotation curves chart").rect();
+    let set = desk.window().bench().curve_sets()[0].clone();
+    // The plot: left the gutter, below the lane and a little air.
+    let (left, right, top, bottom) =
+        (chart.left() + 132.0, chart.right() - 14.0, chart.top() + 8.0, chart.bottom() - 20.0);
+    let (secs, before) = (1.0, set.shown_at(1.0).unwrap()[1]);
+    let at =
+        Pos2::new(left + (right - left) * 0.5, bottom - (bottom - top) * ((before + 40.0) / 80.0) as f32);
+    let up = (bottom - top) * 12.0 / 80.0;
+    let steps = desk.steps();
+    desk.drag(at, vec2(1.0, -up), Modifiers::NONE, |desk| {
+        assert_eq!(desk.steps(), steps);
+        assert_near(desk.degrees("Trunk", secs)[1], before + 12.0, 0.3);
+        // Wider while it is held.
+        desk.ask(Command::Curve(CurveCommand::SetFalloff(0.5)));
+    });
+    assert_eq!(desk.steps(), steps + 1);
+    let [PassStep::Push(pass)] = desk.passes().try_into().unwrap() else { panic!("one pass of pushes") };
+    let push = pass.pushes[0];
+    assert_near(push.center_secs, secs, 1.0 / 60.0);
+    assert_near(push.reach_secs, 0.5, 1e-9);
+    assert_near(desk.degrees("Trunk", secs)[1], before + 12.0, 0.3);
+    let at_first = |secs: f64| source.rotation(desk.joint("Trunk")).unwrap().at(secs);
+    for secs in [0.0, 0.4, 1.6, 2.0] {
+        assert!(at_first(secs).turn_to(desk.track("Trunk").at(secs)) < 1e-9, "outside its reach at {secs}");
+    }
+    // Halfway to its end a cubic B-spline has a quarter of its height (de Boor 1978).
+    let half = at_first(1.25).turn_to(desk.track("Trunk").at(1.25)).to_degrees();
+    assert_near(half, 12.0 / 4.0, 0.25);
+    assert!(Arc::ptr_eq(&source, desk.window().bench().source().unwrap()));
+}
+
+#[test]
+fn a_range_is_smoothed_and_reduced_as_passes_on_the_chosen_joints() {
+    let mut desk = Desk::new();
+    desk.choose("Trunk");
+    let joint = desk.joint("Trunk");
+    desk.ask(Command::SetLoopRange(Some((0.5, 1.5))));
+    desk.press(Modifiers::ALT, Key::S);
+    desk.harness.get_by_label("Reduce keys of range").click();
+    desk.run();
+    let [PassStep::Smooth(smooth), PassStep::Reduce(reduce)] = desk.passes().try_into().unwrap() else {
+        panic!("two passes")
+    };
+    for scope in [&smooth.scope, &reduce.scope] {
+        assert_eq!((scope.joints.as_deref(), scope.span_secs), (Some(&[joint][..]), Some([0.5, 1.5])));
+    }
+    let times = desk.times("Trunk");
+    let inside = times.iter().filter(|secs| (0.5..=1.5).contains(*secs)).count();
+    assert!(inside < 20 && times.len() - inside >= 30, "{inside} of {}", times.len());
+    // With keys chosen these say where.
+    let mut keys = KeyChoice::default();
+    keys.add(joint, [0.1, 0.2, 0.4]);
+    desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+    desk.act(CurveAction::Smooth);
+    let passes = desk.passes();
+    let Some(PassStep::Smooth(third)) = passes.last() else { panic!("{passes:?}") };
+    assert_eq!(third.scope.span_secs, Some([0.1, 0.4]));
+}
+
+#[test]
+fn twist_is_moved_alone_and_limits_are_bands() {
+    let mut desk = Desk::new();
+    let joint = desk.joint(ARM);
+    let range =
+        Range { swing: SwingLimit::Cone { half_rad: 0.5 }, twist: Interval::from_degrees(-30.0, 20.0) };
+    let limit = JointLimit::new(Rotor::IDENTITY, DVec3::X, DVec3::Z, range);
+    let limits = Limits { title: "test".to_owned(), joints: [(joint, limit)].into() };
+    desk.ask(Command::Edit(Edit::SetLimits { work: 0, limits: Some(Arc::new(limits)) }));
+    desk.ask(Command::Do(Action::SwingTwist));
+    let sets = desk.window().bench().curve_sets();
+    assert_eq!(sets[0].view, CurveView::SwingTwist);
+    assert_eq!(sets[0].bands.len(), 2);
+    assert_eq!(sets[0].bands[1].low.map(f64::round), Some(-30.0));
+    // The arm points along x, so a turn in yz is all twist.
+    assert_near(sets[0].shown_at(1.0).unwrap()[1], 40.0, 1e-3);
+    let pip = desk.pip(ARM, 1.0, "twist");
+    desk.drag(pip, vec2(0.0, 30.0), Modifiers::NONE, |_| {});
+    let after = desk.window().bench().curve_sets()[0].shown_at(1.0).unwrap();
+    assert!(after[1] < 39.0 && after[0].abs() < 1e-3, "{after:?}");
+    let [_, zx, xy] = desk.degrees(ARM, 1.0);
+    assert!(zx.abs() < 1e-6 && xy.abs() < 1e-6);
+}
+
+#[test]
+fn values_are_zoomed_moved_and_fitted() {
+    let mut desk = Desk::new();
+    let values = |desk: &Desk<'_>| desk.window().bench().session.curves.values;
+    assert_eq!(values(&desk), None);
+    desk.press(Modifiers::ALT, Key::PageUp);
+    let [low, high] = values(&desk).unwrap();
+    assert_near(high - low, 40.0 * 1.12 / 2.0, 0.5);
+    desk.press(Modifiers::COMMAND, Key::PageUp);
+    assert!(values(&desk).unwrap()[0] > low);
+    desk.press(Modifiers::ALT, Key::Num8);
+    assert_eq!(values(&desk), None);
+    let chart = desk.harness.get_by_label("Rotation curves chart").rect();
+    desk.drag(chart.left_center() + vec2(60.0, 0.0), vec2(0.0, 20.0), Modifiers::NONE, |_| {});
+    assert!(values(&desk).unwrap()[1] > 42.4, "{:?}", values(&desk));
+}
+
+#[test]
+fn keys_of_a_file_with_rows_stay_rows_and_can_be_edited_again() {
+    let Some(path) = shared("data/bvh/cmu_05_06_dance.bvh") else { return };
+    let mut desk = Desk::open(path, tempfile::tempdir().unwrap());
+    let clip = desk.window().bench().source().unwrap().clone();
+    let joint = clip.skeleton.listed().find(|&joint| clip.rotation(joint).is_some()).unwrap();
+    let name = clip.skeleton.label(joint).to_owned();
+    desk.choose(&name);
+    let (grid, count) = (clip.grid.clone(), clip.grid.count());
+    let mut keys = KeyChoice::default();
+    keys.add(joint, (100..110).map(|frame| grid.time(frame)));
+    desk.ask(Command::Curve(CurveCommand::Choose(keys.clone())));
+    desk.act(CurveAction::Delete);
+    assert_eq!(desk.times(&name).len(), count, "rows stay");
+    let (from, to) = (grid.time(99), grid.time(110));
+    let middle = desk.track(&name).at(f64::midpoint(from, to));
+    let straight = turnwright::rotor::slerp(desk.track(&name).at(from), desk.track(&name).at(to), 0.5);
+    assert!(middle.turn_to(straight) < 1e-3, "the way between is straight");
+    // The rows are there again, and can be turned: by a pass of their own.
+    desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+    let before = desk.track(&name).at(grid.time(105));
+    desk.act(CurveAction::Up);
+    assert_eq!(desk.passes().len(), 2);
+    let turned = before.turn_to(desk.track(&name).at(grid.time(105))).to_degrees();
+    assert!(turned > 0.2, "turned by {turned}°");
+    assert!(desk.harness.get_by_label("Rotation curves chart").accesskit_node().label().is_some());
+}
+
+/// Pictures of the editor at work for people to look at, under `target/tmp/curves`: what is chosen and what is pushed is to be seen.
+#[test]
+fn what_is_chosen_and_what_is_pushed_is_to_be_seen() {
+    let folder = std::path::Path::new(env!("CARGO_TARGET_TMPDIR")).join("curves");
+    std::fs::create_dir_all(&folder).unwrap();
+    let mut shoot = |desk: &mut Desk<'_>, name: &str| {
+        desk.run();
+        let image = desk.harness.render().unwrap();
+        image.save(folder.join(name)).unwrap();
+        image
+    };
+    for (size, sparse) in [([1280.0, 720.0], true), ([2560.0, 1440.0], false)] {
+        let (own, path) = (tempfile::tempdir().unwrap(), shared("data/bvh/cmu_05_06_dance.bvh"));
+        let rise = own.path().join("rise.glb");
+        disk::write(&rise, &gltf::from_clip(&figure(), "rise").unwrap().bytes).unwrap();
+        let Some(dance) = path else { return };
+        for (is_dance, path) in [(false, rise.clone()), (true, dance)] {
+            let mut desk = Desk::of_size(path, tempfile::tempdir().unwrap(), size);
+            let kind = format!("{}_{}", if is_dance { "dance" } else { "rise" }, size[0]);
+            if sparse {
+                desk.ask(Command::Do(Action::Light));
+            }
+            if is_dance {
+                let clip = desk.window().bench().source().unwrap().clone();
+                let joint = clip.skeleton.find("LeftArm").unwrap_or(3);
+                desk.ask(Command::ChooseJoint(Some(joint)));
+                let at = clip.grid.time(clip.grid.count() / 2);
+                desk.ask(Command::ShowTime(TimeWindow { start_secs: at - 2.0, end_secs: at + 2.0 }));
+                desk.ask(Command::Scrub(at));
+                let plain = shoot(&mut desk, &format!("{kind}_plain.png"));
+                for _ in 0..12 {
+                    desk.press(Modifiers::COMMAND | Modifiers::ALT, Key::ArrowUp);
+                }
+                let pushed = shoot(&mut desk, &format!("{kind}_pushed.png"));
+                assert_ne!(plain, pushed);
+                let mut keys = KeyChoice::default();
+                keys.add(joint, (0..60).map(|frame| clip.grid.time(clip.grid.count() / 2 + frame)));
+                desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+                assert_ne!(pushed, shoot(&mut desk, &format!("{kind}_chosen.png")));
+            } else {
+                desk.choose(ARM);
+                let plain = shoot(&mut desk, &format!("{kind}_plain.png"));
+                desk.ask(Command::ChooseAlso(desk.joint("RightArm")));
+                desk.act(CurveAction::ChooseAll);
+                let chosen = shoot(&mut desk, &format!("{kind}_chosen.png"));
+                assert_ne!(plain, chosen);
+                desk.act(CurveAction::ChooseNone);
+                desk.ask(Command::Scrub(0.7));
+                desk.act(CurveAction::ChooseSegment);
+                desk.act(CurveAction::EaseBoth);
+                assert_ne!(chosen, shoot(&mut desk, &format!("{kind}_segment.png")));
+            }
+        }
+    }
+}
