@@ -509,7 +509,7 @@ pub const TABLE: &[Entry] = &{
         entry(K, A::Curve(C::Smooth), "Smooth range", "A pass that smooths the chosen joints over the chosen keys, else over the chosen stretch of time or the loop", Some(alt(Key::S)), JOINT).group(),
         entry(K, A::Curve(C::Reduce), "Reduce keys of range", "A pass that leaves as few keys as its bound allows, over the chosen keys, else over the chosen stretch of time or the loop", Some(alt(Key::R)), JOINT),
         entry(K, A::Curve(C::Snap), "Snap keys to frames", "Moved keys come to stand on frames", Some(alt(Key::F)), CLIP).switch(|now| now.snaps_to_frames).group(),
-        entry(K, A::Curve(C::FitValues), "Fit values", "The curves on screen from bottom to top", Some(alt(Key::Num8)), CLIP).group(),
+        entry(K, A::Curve(C::FitValues), "Fit values", "The curves on screen from bottom to top", Some(alt(Key::V)), CLIP).group(),
         entry(K, A::Curve(C::NearerValues), "Zoom in on values", "Half as large a range of values", Some(alt(Key::PageUp)), CLIP),
         entry(K, A::Curve(C::FartherValues), "Zoom out of values", "Twice as large a range of values", Some(alt(Key::PageDown)), CLIP),
         entry(K, A::Curve(C::ValuesUp), "Look at higher values", "Move the range of values up", Some(ctrl(Key::PageUp)), CLIP),

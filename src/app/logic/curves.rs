@@ -8,7 +8,7 @@ use super::super::curve_hand::ShownStroke;
 use super::super::panels::Message;
 use super::super::view_models::{
     CurveKey, CurveSet, Grip, KeyBase, KeyChoice, KeyDrag, Stroke, counted, fitted_values, key_at,
-    local_curves, with_more,
+    local_curves, with_more, with_more_pushes,
 };
 use super::super::window::Window;
 use crate::clip::{
@@ -644,7 +644,7 @@ fn edit_of(work: usize, own: &ClipWork, base: &Clip, stroke: &Stroke) -> Edit {
         },
         Stroke::Pushes(pushes) => match last.map(|pass| (pass.id, &pass.step)) {
             Some((pass, PassStep::Push(known))) => {
-                let pushes = known.pushes.iter().chain(pushes).copied().collect();
+                let pushes = with_more_pushes(&known.pushes, pushes);
                 Edit::ChangePass { work, pass, step: PushPass { pushes }.into() }
             }
             _ => new(PushPass { pushes: pushes.clone() }.into()),

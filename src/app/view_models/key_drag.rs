@@ -254,6 +254,25 @@ pub fn with_more(edits: &[KeyEdit], more: &[KeyEdit]) -> Vec<KeyEdit> {
     all
 }
 
+/// The same for pushes: a push at the place of the last one, of the same reach, becomes one with it, and adds up where it is whole.
+pub fn with_more_pushes(pushes: &[Push], more: &[Push]) -> Vec<Push> {
+    let mut all = pushes.to_vec();
+    for push in more {
+        let turn = |own: &Push| Rotor::from_plane_angles(own.turn);
+        match all.last_mut() {
+            Some(last)
+                if Push { turn: push.turn, ..*last } == *push
+                    && push.frame == PushFrame::Own
+                    && last.turn.length() + push.turn.length() < std::f64::consts::PI =>
+            {
+                last.turn = (turn(last) * turn(push)).plane_angles();
+            }
+            _ => all.push(*push),
+        }
+    }
+    all
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;

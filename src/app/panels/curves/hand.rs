@@ -62,6 +62,8 @@ pub(crate) struct CurvePress {
     is_drag: bool,
     adds: bool,
     way: Way,
+    /// The values from bottom to top when it began: a chart that fitted them anew would run away under the hand.
+    bounds: [f64; 2],
 }
 
 /// What the pointer is over while nothing is held.
@@ -97,6 +99,7 @@ pub(super) fn hand_ui(ui: &Ui, response: &Response, chart: &Chart<'_>, scope: &m
                 is_drag: false,
                 adds: modifiers.shift,
                 way: Way::Both,
+                bounds: [chart.values.low, chart.values.high],
             });
         }
     }
@@ -213,6 +216,11 @@ fn nearest_chosen(chart: &Chart<'_>, secs: f64) -> Option<Grip> {
 }
 
 impl CurvePress {
+    /// The values to be shown while it lasts.
+    pub(super) fn held_values(&self) -> Option<[f64; 2]> {
+        (self.hold != Hold::Gutter).then_some(self.bounds)
+    }
+
     fn go_on(&mut self, at: Pos2, is_fine: bool) {
         let step = at - self.last;
         self.last = at;

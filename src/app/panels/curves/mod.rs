@@ -9,7 +9,7 @@ mod keys;
 mod marks;
 mod spacing;
 
-use egui::{Rangef, Rect, Role, Sense, Ui, WidgetInfo, pos2};
+use egui::{Rangef, Rect, Role, Sense, Ui, WidgetInfo, pos2, vec2};
 
 use super::super::commands::Action;
 use super::super::theme::{GUTTER_WIDTH, TIME_MARGIN};
@@ -82,7 +82,8 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let lane = Rect::from_x_y_ranges(axis.span, Rangef::new(lane_top, area.bottom()));
     let response = ui.allocate_rect(area, Sense::click_and_drag());
     response.widget_info(|| WidgetInfo::labeled(Role::Canvas, true, "Rotation curves chart"));
-    let bounds = session.curves.values.or_else(|| fitted_values(&sets, session.window));
+    let held = scope.pictures.curve_press.and_then(|press| press.held_values());
+    let bounds = held.or(session.curves.values).or_else(|| fitted_values(&sets, session.window));
     let chart = Chart {
         area,
         plot,
@@ -109,7 +110,9 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     marks::snag_spans_ui(&inside, &axis, plot, &joints, scope);
     marks::lines_ui(&inside, &look, &chart, session.shows_before);
     marks::segment_ui(&inside, &look, &chart, session.curves.segment);
-    keys::pips_ui(ui, &inside, &look, &chart);
+    // Pips at the ends of the clip are whole.
+    let around = inside.with_clip_rect(inside.clip_rect().expand2(vec2(7.0, 0.0)));
+    keys::pips_ui(ui, &around, &look, &chart);
     keys::lane_ui(ui, &look, &chart);
     marks::names_ui(&inside, &look, &chart);
     let now = session.playback.playhead_secs;
