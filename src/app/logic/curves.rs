@@ -1,5 +1,6 @@
 //! Edits on the rotation curves: gestures, the menu *Keys*, and what is typed.
 
+use std::fmt::Write as _;
 use std::sync::Arc;
 
 use super::super::bench::FromClips;
@@ -357,7 +358,8 @@ impl Window {
             for key in times.iter().filter_map(|&secs| key_at(track, secs)).take(10_000) {
                 let [yz, zx, xy] = track.sound_key(key).plane_angles().to_degrees();
                 let (label, secs) = (clip.skeleton.label(joint), track.times.at(key));
-                text.push_str(&format!("{label},{secs:.6},{yz:.6},{zx:.6},{xy:.6}\n"));
+                // Writing to a string does not fail.
+                let _ = writeln!(text, "{label},{secs:.6},{yz:.6},{zx:.6},{xy:.6}");
             }
         }
         text

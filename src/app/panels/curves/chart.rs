@@ -80,7 +80,7 @@ impl Chart<'_> {
             return None;
         }
         let span = self.local(joint).map(LocalCurves::span);
-        let is_apart = |secs: &f64| span.is_none_or(|[start, end]| !(start..=end).contains(&secs));
+        let is_apart = |secs: &f64| span.is_none_or(|[start, end]| !(start..=end).contains(secs));
         let mut keys: Vec<f64> = (first..=last).map(|key| track.times.at(key)).filter(is_apart).collect();
         if let Some(local) = self.local(joint) {
             keys.extend(&local.keys);
