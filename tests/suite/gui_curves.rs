@@ -1,5 +1,7 @@
 //! Editing on the rotation curves, by pointer and by keyboard; what is asserted is the document and what it plays.
 
+#![expect(clippy::unwrap_used, reason = "helpers of tests fail as tests do")]
+
 use std::path::PathBuf;
 use std::sync::Arc;
 
