@@ -38,6 +38,8 @@ pub(super) struct Chart<'a> {
 const LEAST_APART: f64 = 7.0;
 /// Nearer than this the pointer is on a pip, on a curve.
 const NEAR_PIP: f32 = 8.0;
+/// A pip takes this share of the way to the next one.
+const PIP_SHARE: f32 = 0.3;
 const NEAR_CURVE: f32 = 5.0;
 
 impl Chart<'_> {
@@ -94,13 +96,17 @@ impl Chart<'_> {
     pub(super) fn pip_at(&self, at: Pos2) -> Option<Grip> {
         let mut best: Option<(f32, Grip)> = None;
         for set in self.sets {
-            for secs in self.keys(set.joint).unwrap_or_default() {
-                if (self.axis.x(secs) - at.x).abs() > NEAR_PIP {
+            let keys = self.keys(set.joint).unwrap_or_default();
+            // Between pips that lie side by side the curve itself must stay within reach.
+            let apart = self.axis.span.span() / keys.len().max(1) as f32;
+            let near = NEAR_PIP.min(PIP_SHARE * apart);
+            for secs in keys {
+                if (self.axis.x(secs) - at.x).abs() > near {
                     continue;
                 }
                 for line in 0..set.lines.len() {
                     let away = self.place(set, line, secs).map_or(f32::INFINITY, |place| place.distance(at));
-                    if away <= NEAR_PIP && best.is_none_or(|(least, _)| away < least) {
+                    if away <= near.max(3.0) && best.is_none_or(|(least, _)| away < least) {
                         best = Some((away, Grip { joint: set.joint, secs, line }));
                     }
                 }
