@@ -16,6 +16,7 @@ mod motion;
 mod rotor;
 mod slope;
 mod spline;
+mod spline_rates;
 mod swing_twist;
 
 pub use bivector::Bivector;

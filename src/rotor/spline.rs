@@ -2,10 +2,11 @@
 
 use std::f64::consts::PI;
 
-use glam::{DMat3, DVec3};
+use glam::DVec3;
 
-use super::batch::{Level, Streams, compose, exp};
-use super::slope::{inverse_jacobian, jacobian, turning_term};
+use super::batch::{Level, Streams, angle_over_sine, compose, exp};
+use super::slope::{Slope, jacobian, turning_term};
+use super::spline_rates::{Segment, rates_at_keys};
 use super::{Bivector, Motion, Rotor};
 
 /// Interpolating spline with continuous body rate and acceleration: in each segment the plane angles from its first key
@@ -134,15 +135,14 @@ impl RotationSpline {
         for i in 1..keys.len() {
             keys[i] = keys[i].aligned_to(keys[i - 1]);
         }
-        let secs: Vec<f64> = times.windows(2).map(|pair| pair[1] - pair[0]).collect();
-        let arcs: Vec<DVec3> =
-            keys.windows(2).map(|pair| (pair[0].reverse() * pair[1]).plane_angles().axis()).collect();
-        if let Some(key) = arcs.iter().position(|arc| arc.length() > PI - HALF_TURN_MARGIN) {
-            return Err(SplineError::HalfTurn { key, turn_rad: arcs[key].length() });
-        }
-        let rates = rates_at_keys(&secs, &arcs, ends)?;
-        let segments = (0..secs.len())
-            .map(|i| Cubic::new(secs[i], arcs[i], rates[i], inverse_jacobian(arcs[i]) * rates[i + 1]))
+        let segments = segments(times, &keys)?;
+        let rates = rates_at_keys(&segments, ends)?;
+        let segments = segments.iter().zip(rates.windows(2));
+        let segments = segments
+            .map(|(segment, rates)| {
+                let Segment { secs, slope, inverse } = segment;
+                Cubic::new(*secs, slope.angles(), rates[0], *inverse * rates[1])
+            })
             .collect();
         Ok(Self { times: times.to_vec(), keys, segments })
     }
@@ -266,6 +266,23 @@ pub(super) fn check_keys(times: &[f64], keys: &[Rotor]) -> Result<(), SplineErro
     Ok(())
 }
 
+/// The stretches between keys that are near each other in sign.
+fn segments(times: &[f64], keys: &[Rotor]) -> Result<Vec<Segment>, SplineError> {
+    let mut segments = Vec::with_capacity(keys.len() - 1);
+    for (key, (times, keys)) in times.windows(2).zip(keys.windows(2)).enumerate() {
+        let turn = keys[0].reverse() * keys[1];
+        let (planes, cosine) = (turn.bivector().axis(), turn.s);
+        let angles = planes * (-2.0 * angle_over_sine(cosine));
+        let turn_rad = angles.length();
+        if turn_rad > PI - HALF_TURN_MARGIN {
+            return Err(SplineError::HalfTurn { key, turn_rad });
+        }
+        let sine = planes.length();
+        segments.push(Segment::new(times[1] - times[0], Slope::of_half_turn(angles, turn_rad, sine, cosine)));
+    }
+    Ok(segments)
+}
+
 /// Plane angles as a cubic of the seconds since the start of a segment: the factors of s, s² and s³.
 #[derive(Clone, Copy, Debug)]
 struct Cubic([DVec3; 3]);
@@ -295,160 +312,4 @@ impl Cubic {
         let Self([_, b, c]) = *self;
         2.0 * b + 6.0 * c * s
     }
-}
-
-/// Body rates at the keys, so that the acceleration does not jump at any inner one.
-///
-/// The condition is linear in the rates but for one term; so the linear part is solved again and again with that
-/// term from the round before.
-fn rates_at_keys(secs: &[f64], arcs: &[DVec3], ends: EndRates) -> Result<Vec<DVec3>, SplineError> {
-    /// 3 to 8 are usual; near half turns it takes many more.
-    const MOST_ROUNDS: usize = 1000;
-    /// Of 200 000 random curves with steps up to 178° all settle with this; with full steps alone up to 3 in 2000 did not.
-    const SMALLEST_SHARE: f64 = 0.2;
-    let n = secs.len();
-    // The secants are also a good first guess for the keys within.
-    let mut rates: Vec<DVec3> = std::iter::once(arcs[0] / secs[0])
-        .chain((1..n).map(|i| 0.5 * (arcs[i - 1] / secs[i - 1] + arcs[i] / secs[i])))
-        .chain(std::iter::once(arcs[n - 1] / secs[n - 1]))
-        .collect();
-    let ends = ends.sides();
-    if let Some(sides) = ends {
-        for (key, side) in [(0, sides[0]), (n, sides[1])] {
-            if let EndRate::Given(rate) = side {
-                rates[key] = rate.axis();
-            }
-        }
-        if n == 1 && !sides.contains(&EndRate::Natural) {
-            return Ok(rates);
-        }
-    }
-    let (mut change, mut share) = (f64::INFINITY, 1.0_f64);
-    for round in 1..=MOST_ROUNDS {
-        let next = match ends {
-            Some(sides) => solve_open(secs, arcs, &rates, sides),
-            None => solve_loop(secs, arcs, &rates),
-        };
-        let size = next.iter().fold(0.0, |size: f64, rate| size.max(rate.length()));
-        // `max` passes over NaN, and a length overflows long before its parts do.
-        if !(next.iter().all(|rate| rate.is_finite()) && size.is_finite()) {
-            return Err(SplineError::NotSettled { change: f64::INFINITY, rounds: round });
-        }
-        let moved = next.iter().zip(&rates).fold(0.0, |moved: f64, (a, b)| moved.max((*a - *b).length()));
-        // Rounding may keep it moving a little for ever: there, it is done when it moves no less than before.
-        if moved <= 1e-15 * size || (moved <= 1e-12 * size && moved >= change) {
-            return Ok(next);
-        }
-        // Where it swings to and fro, a part of the way leads on.
-        if moved >= change {
-            share = (share * 0.8).max(SMALLEST_SHARE);
-        }
-        for (rate, next) in rates.iter_mut().zip(next) {
-            *rate += (next - *rate) * share;
-        }
-        change = moved;
-    }
-    Err(SplineError::NotSettled { change, rounds: MOST_ROUNDS })
-}
-
-/// One condition: `lower · rate before + diagonal · own rate + upper · rate after = right`.
-struct Row {
-    lower: DMat3,
-    diagonal: DMat3,
-    upper: DMat3,
-    right: DVec3,
-}
-
-impl Row {
-    /// The acceleration does not jump where segment `before` gives way to segment `after`, at a key of the rate `rate` so far.
-    fn inner(secs: &[f64], arcs: &[DVec3], before: usize, after: usize, rate: DVec3) -> Self {
-        let (secs_before, secs_after) = (secs[before], secs[after]);
-        let right = 6.0
-            * (arcs[before] / (secs_before * secs_before) + arcs[after] / (secs_after * secs_after))
-            - turning_term(arcs[before], inverse_jacobian(arcs[before]) * rate);
-        Self {
-            lower: jacobian(arcs[before]) * (2.0 / secs_before),
-            diagonal: DMat3::from_diagonal(DVec3::splat(4.0 * (1.0 / secs_before + 1.0 / secs_after))),
-            upper: inverse_jacobian(arcs[after]) * (2.0 / secs_after),
-            right,
-        }
-    }
-
-    /// The rate itself is known.
-    fn known(rate: DVec3) -> Self {
-        Self { lower: DMat3::ZERO, diagonal: DMat3::IDENTITY, upper: DMat3::ZERO, right: rate }
-    }
-
-    /// No acceleration at the start of the first segment.
-    fn natural_start(secs: f64, arc: DVec3) -> Self {
-        let diagonal = DMat3::from_diagonal(DVec3::splat(2.0));
-        Self { lower: DMat3::ZERO, diagonal, upper: inverse_jacobian(arc), right: 3.0 * arc / secs }
-    }
-
-    /// No acceleration at the end of the last segment, where the rate is `rate` so far.
-    fn natural_end(secs: f64, arc: DVec3, rate: DVec3) -> Self {
-        let right = 6.0 * arc / secs - secs * turning_term(arc, inverse_jacobian(arc) * rate);
-        let diagonal = DMat3::from_diagonal(DVec3::splat(4.0));
-        Self { lower: jacobian(arc) * 2.0, diagonal, upper: DMat3::ZERO, right }
-    }
-}
-
-/// One round with two ends: the block tridiagonal system by elimination from the first to the last key and back.
-fn solve_open(secs: &[f64], arcs: &[DVec3], rates: &[DVec3], [start, end]: [EndRate; 2]) -> Vec<DVec3> {
-    let n = secs.len();
-    let row = |key: usize| match key {
-        0 if start == EndRate::Natural => Row::natural_start(secs[0], arcs[0]),
-        key if key == n && end == EndRate::Natural => Row::natural_end(secs[n - 1], arcs[n - 1], rates[n]),
-        // Known rates stand in the guess.
-        key if key == 0 || key == n => Row::known(rates[key]),
-        key => Row::inner(secs, arcs, key - 1, key, rates[key]),
-    };
-    // For each key, `rate = constant − factor · rate of the next`.
-    let mut eliminated: Vec<(DMat3, DVec3)> = Vec::with_capacity(n + 1);
-    for key in 0..=n {
-        let Row { lower, diagonal, upper, right } = row(key);
-        let (pivot, right) = match eliminated.last() {
-            None => (diagonal, right),
-            Some(&(factor, constant)) => (diagonal - lower * factor, right - lower * constant),
-        };
-        let inverse = pivot.inverse();
-        eliminated.push((inverse * upper, inverse * right));
-    }
-    let mut next = vec![DVec3::ZERO; n + 1];
-    let mut after = DVec3::ZERO;
-    for (rate, (factor, constant)) in next.iter_mut().zip(eliminated).rev() {
-        after = constant - factor * after;
-        *rate = after;
-    }
-    next
-}
-
-/// One round in a closed loop: every other rate is told by that at the seam, and the condition at the seam tells that one.
-fn solve_loop(secs: &[f64], arcs: &[DVec3], rates: &[DVec3]) -> Vec<DVec3> {
-    let n = secs.len();
-    // For each inner key, `rate = constant − factor · rate of the next − seam · rate at the seam`.
-    let mut eliminated: Vec<(DMat3, DMat3, DVec3)> = Vec::with_capacity(n);
-    for (key, &rate) in rates.iter().enumerate().take(n).skip(1) {
-        let Row { lower, diagonal, upper, right } = Row::inner(secs, arcs, key - 1, key, rate);
-        let (pivot, seam, right) = match eliminated.last() {
-            None => (diagonal, lower, right),
-            Some(&(factor, seam, constant)) => {
-                (diagonal - lower * factor, lower * seam * -1.0, right - lower * constant)
-            }
-        };
-        let inverse = pivot.inverse();
-        eliminated.push((inverse * upper, inverse * seam, inverse * right));
-    }
-    // From the seam back: `rate = constant − seam · rate at the seam`; the seam itself is −1 of it.
-    let mut by_seam = vec![(DVec3::ZERO, DMat3::IDENTITY * -1.0); n + 1];
-    for key in (1..n).rev() {
-        let (factor, seam, constant) = eliminated[key - 1];
-        let (after_constant, after_seam) = by_seam[key + 1];
-        by_seam[key] = (constant - factor * after_constant, seam - factor * after_seam);
-    }
-    let Row { lower, diagonal, upper, right } = Row::inner(secs, arcs, n - 1, 0, rates[0]);
-    let ((before, before_seam), (after, after_seam)) = (by_seam[n - 1], by_seam[1]);
-    let pivot = diagonal - lower * before_seam - upper * after_seam;
-    let seam = pivot.inverse() * (right - lower * before - upper * after);
-    by_seam.into_iter().map(|(constant, factor)| constant - factor * seam).collect()
 }

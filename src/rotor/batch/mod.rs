@@ -42,6 +42,7 @@ mod streams;
 mod turn;
 
 pub use euler::{euler_angles, euler_rotors};
+pub(super) use exp_log::angle_over_sine;
 pub use exp_log::{exp, log};
 pub use level::Level;
 pub use product::{apply, carry, carry_bone, compose};
