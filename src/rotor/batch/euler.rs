@@ -83,17 +83,30 @@ fn rotors<const PROPER: bool>(
 ) {
     /// Beyond it the multiples of π that are taken off are no longer exact.
     const MOST: f64 = 1e5;
+    /// Below it [`half`] takes nothing off.
+    const MOST_SHORT: f64 = 3.1;
     let Desk { guards, rests, squares, signs, sines, cosines } = desk;
     for row in 0..ROWS {
         guards[row] = MOST - size([angles[0][row], angles[1][row], angles[2][row]]);
         signs[row] = 1.0;
     }
+    // Seldom is an angle beyond half a turn; without one nothing has to be taken off.
+    let are_short = angles.iter().all(|angles| {
+        angles.iter().fold(true, |all, angle| all & (angle.abs() <= MOST_SHORT))
+    });
     for axis in 0..3 {
-        for row in 0..ROWS {
-            let (rest, sign) = half(angles[axis][row]);
-            rests[row] = rest;
-            squares[row] = rest * rest;
-            signs[row] *= sign;
+        if are_short {
+            for row in 0..ROWS {
+                rests[row] = 0.5 * angles[axis][row];
+                squares[row] = rests[row] * rests[row];
+            }
+        } else {
+            for row in 0..ROWS {
+                let (rest, sign) = half(angles[axis][row]);
+                rests[row] = rest;
+                squares[row] = rest * rest;
+                signs[row] *= sign;
+            }
         }
         for row in 0..ROWS {
             sines[axis][row] = rests[row] * squares[row].sine_over_angle();
