@@ -71,10 +71,11 @@ pub(super) fn open_one(text: &str, options: &OpenOptions, output: &mut Output) -
     Ok(inputs.swap_remove(0))
 }
 
-/// Opens a clip file that this program has just written; its name is taken as it is.
-pub(super) fn read_back(path: &Path, output: &mut Output) -> Result<Input, CliError> {
+/// Opens a clip file that this program has just written; its name is taken as it is. What was written from a table of another make
+/// has that one's columns still: it is read with the `options` of its source.
+pub(super) fn read_back(path: &Path, options: &OpenOptions, output: &mut Output) -> Result<Input, CliError> {
     let address = ClipAddress { path: path.to_owned(), clip: None };
-    let input = open_clips(&address, &OpenOptions::default())?;
+    let input = open_clips(&address, options)?;
     output.notes(path, &input.source.notes);
     Ok(input)
 }

@@ -123,13 +123,9 @@ impl RotationTrack {
     fn plain_at(&self, keys: &Streams<f64, 4>, times_secs: &[f64]) -> Vec<Rotor> {
         let mut found = Vec::with_capacity(times_secs.len());
         let (mut sampler, mut places) = (Sampler::new(), Places::new());
-        let mut tile = [[0.0; TILE]; 4];
         for times_secs in times_secs.chunks(TILE) {
             places.find(&self.times, times_secs);
-            let rows = 0..times_secs.len();
-            sampler.sample(keys, &places, tile.each_mut().map(|stream| &mut stream[rows.clone()]));
-            let [s, yz, zx, xy] = &tile;
-            found.extend(rows.map(|row| Rotor::new(s[row], yz[row], zx[row], xy[row])));
+            sampler.append(keys, &places, &mut found);
         }
         found
     }
@@ -152,9 +148,10 @@ impl Clip {
     /// [`Clip::local_at_by`] for each of `times_secs`.
     pub fn locals_at_by(&self, times_secs: &[f64], path: Option<PathKind>) -> Vec<LocalPose> {
         let mut poses = vec![self.skeleton.rest_pose(); times_secs.len()];
+        let mut playing = self.playing(times_secs, path);
         for (joint, tracks) in self.joints.iter().enumerate().take(self.skeleton.len()) {
             if tracks.rotation.as_ref().is_some_and(|track| !track.times.is_empty()) {
-                let turns = self.rotations_at_by(joint, times_secs, path);
+                let turns = playing.rotations(joint);
                 for (pose, turn) in poses.iter_mut().zip(turns) {
                     pose[joint].rotation = turn;
                 }
@@ -262,10 +259,14 @@ fn parts(rotor: Rotor) -> [f64; 4] {
 
 #[cfg(test)]
 mod tests {
+    use std::sync::Arc;
+
     use super::super::path::Paths;
     use super::super::times::Times;
+    use super::super::{FrameGrid, JointTracks};
     use super::*;
     use crate::rotor::Bivector;
+    use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
 
     /// Turns about changing planes, of changing sign, one of them not finite and one far off unit length.
     fn track(path: PathKind) -> RotationTrack {
@@ -300,6 +301,54 @@ mod tests {
                 let alone = track.at(secs);
                 assert!(rotor.turn_to(alone) < 4e-15, "{path:?} at {secs}: {rotor:?} and {alone:?}");
                 assert!((rotor.norm() - 1.0).abs() < 2e-15, "{path:?} at {secs}: length {}", rotor.norm());
+            }
+        }
+    }
+
+    #[test]
+    fn joints_one_after_the_other_are_what_each_is_alone() {
+        let rig = |paths: &[PathKind]| {
+            let tracks = paths.iter().map(|&path| {
+                let rotation = Some(track(path));
+                Arc::new(JointTracks { rotation, ..JointTracks::default() })
+            });
+            let joints = (0..paths.len()).map(|number| Joint {
+                name: format!("J{number}"),
+                number,
+                parent: number.checked_sub(1),
+                rest: Transform::default(),
+                kind: JointKind::Joint,
+                tips: vec![],
+            });
+            Clip {
+                name: String::new(),
+                skeleton: Arc::new(Skeleton::new(joints.collect()).unwrap()),
+                joints: tracks.collect(),
+                duration_secs: 4.0,
+                grid: FrameGrid { times: track(PathKind::Slerp).times, rate: 10.0 },
+            }
+        };
+        let mut clip = rig(&[PathKind::Slerp, PathKind::Slerp, PathKind::Squad, PathKind::Slerp]);
+        // Keys at a tenth of a second beside those of the others, and a joint that nothing turns.
+        let even = Times::Even { step_secs: 0.1, count: 40 };
+        let keys = track(PathKind::Slerp).keys;
+        let joint =
+            JointTracks { rotation: Some(RotationTrack::from_rotors(even, keys)), ..JointTracks::default() };
+        clip.joints[1] = Arc::new(joint);
+        clip.joints[3] = Arc::default();
+        // At any times, and at twice the rate of the keys from a key and from a middle on, an odd and an even number of them.
+        let any: Vec<f64> = (0..777).map(|i| f64::from(i) * 0.005 - 0.1).collect();
+        let double = |start: i32, end: i32| (start..end).map(|i| f64::from(i) * 0.05).collect::<Vec<f64>>();
+        for times in [any, double(0, 79), double(1, 79), double(1, 78), double(3, 4), vec![]] {
+            let mut playing = clip.playing(&times, None);
+            for joint in [0, 1, 1, 0, 2, 3] {
+                assert_eq!(playing.rotations(joint), clip.rotations_at(joint, &times), "joint {joint}");
+                for (&secs, turn) in times.iter().zip(playing.rotations(joint)) {
+                    assert!(
+                        turn.turn_to(clip.local_at(secs)[joint].rotation) < 4e-15,
+                        "joint {joint} at {secs}"
+                    );
+                }
             }
         }
     }

@@ -16,6 +16,7 @@ mod keys;
 mod loop_seam;
 mod path;
 mod places;
+mod playing;
 mod reduce;
 mod resample;
 mod rotation_track;
@@ -44,6 +45,7 @@ pub use loop_seam::{LoopSeam, ends_on_first_pose};
 pub use path::{
     Handles, MeantTurn, Pace, PathError, PathKind, Paths, Peak, Segment, Segments, Spacing, SpacingError,
 };
+pub use playing::Playing;
 pub use reduce::{KeyCount, ReduceOptions, reduced, reduced_together};
 pub use resample::{cut, resampled};
 pub use rotation_track::{FileAngles, RotationTrack, Stored};

@@ -1,6 +1,7 @@
 //! Slerp between keys at many places, from streams to streams.
 
-use crate::rotor::batch::{self, Level, PartsMut, Streams};
+use crate::rotor::Rotor;
+use crate::rotor::batch::{self, Level, Parts, PartsMut, Streams};
 
 use super::places::{Column, Places, TILE};
 
@@ -31,8 +32,31 @@ impl Sampler {
         }
     }
 
-    /// Where keys and the middles between them take turns nothing has to be looked up.
-    fn sample_double(&mut self, keys: &Streams<f64, 4>, places: &Places, out: PartsMut<'_, f64, 4>) {
+    /// As [`Sampler::sample`], behind what was `found` so far.
+    pub(super) fn append(&mut self, keys: &Streams<f64, 4>, places: &Places, found: &mut Vec<Rotor>) {
+        let len = places.len;
+        let rotor =
+            |[s, yz, zx, xy]: Parts<'_, f64, 4>, row: usize| Rotor::new(s[row], yz[row], zx[row], xy[row]);
+        if !places.are_double {
+            let mut tile = [[0.0; TILE]; 4];
+            self.sample_any(keys, places, tile.each_mut().map(|stream| &mut stream[..len]));
+            let parts = tile.each_ref().map(|stream| &stream[..len]);
+            found.extend((0..len).map(|row| rotor(parts, row)));
+            return;
+        }
+        let (first, phase, middles) = self.middles(keys, places);
+        let keys = keys.parts().map(|stream| &stream[first + phase..first + phase + len - middles]);
+        let between = self.between.each_ref().map(|stream| &stream[..middles]);
+        let (before, behind) = if phase == 0 { (keys, between) } else { (between, keys) };
+        found.extend((0..len / 2).flat_map(|row| [rotor(before, row), rotor(behind, row)]));
+        if len % 2 == 1 {
+            found.push(rotor(before, len / 2));
+        }
+    }
+
+    /// Computes what lies between the keys. Gives the key at or before the first place, 1 when that is between two keys, and how many
+    /// are.
+    fn middles(&mut self, keys: &Streams<f64, 4>, places: &Places) -> (usize, usize, usize) {
         let len = places.len;
         let (first, shares) = (places.keys[0], &places.shares[..len]);
         // 1 when it begins between two keys.
@@ -49,7 +73,14 @@ impl Sampler {
             &self.shares[..middles],
             self.between.each_mut().map(|stream| &mut stream[..middles]),
         );
-        for ((out, keys), between) in out.into_iter().zip(parts).zip(&self.between) {
+        (first, phase, middles)
+    }
+
+    /// Where keys and the middles between them take turns nothing has to be looked up.
+    fn sample_double(&mut self, keys: &Streams<f64, 4>, places: &Places, out: PartsMut<'_, f64, 4>) {
+        let len = places.len;
+        let (first, phase, middles) = self.middles(keys, places);
+        for ((out, keys), between) in out.into_iter().zip(keys.parts()).zip(&self.between) {
             let keys = &keys[first + phase..first + phase + len - middles];
             let between = &between[..middles];
             let (before, behind) = if phase == 0 { (keys, between) } else { (between, keys) };

@@ -1,7 +1,5 @@
 //! Every joint in the scene at many times at once.
 
-use std::sync::Arc;
-
 use glam::DVec3;
 
 use crate::rotor::Rotor;
@@ -9,11 +7,7 @@ use crate::rotor::batch::{self, Level, Parts, Streams};
 use crate::skeleton::WorldJoint;
 
 use super::path::PathKind;
-use super::places::{Places, TILE};
-use super::rotation_track::RotationTrack;
-use super::sampler::Sampler;
 use super::take::Clip;
-use super::times::Times;
 
 /// Where each joint stands and how it is turned in the scene, at some times.
 #[derive(Clone, Debug)]
@@ -122,11 +116,10 @@ impl Clip {
             Rigid { numbers: Vec::with_capacity(7 * joints.len() * (count + Rigid::GAP)), times: count };
         let (mut turns, mut places) = (Streams::zeros(count), Streams::zeros(count));
         let mut world = (Streams::zeros(count), Streams::zeros(count));
-        let mut sampling = Sampling::new(times_secs, path);
+        let mut playing = self.playing(times_secs, path);
         for (joint, own) in joints.iter().enumerate() {
             let tracks = self.joints.get(joint).map(|tracks| &**tracks);
-            let rotation = tracks.and_then(|tracks| tracks.rotation.as_ref());
-            sampling.turns(rotation, own.rest.rotation, &mut turns);
+            playing.turns(joint, &mut turns);
             let rest = own.rest.translation;
             let track = tracks.and_then(|tracks| tracks.translation.as_ref());
             let track = track.filter(|track| !track.times.is_empty());
@@ -153,64 +146,6 @@ impl Clip {
             worlds.push(world.0.parts(), world.1.parts());
         }
         Worlds(Form::Rigid(worlds))
-    }
-}
-
-/// Joint after joint at the same times.
-struct Sampling<'a> {
-    times_secs: &'a [f64],
-    path: Option<PathKind>,
-    sampler: Sampler,
-    /// Where the times fall among the keys of the joint before: most joints of a clip have their keys at the same times.
-    places: Option<(&'a Times, Vec<Places>)>,
-}
-
-impl<'a> Sampling<'a> {
-    fn new(times_secs: &'a [f64], path: Option<PathKind>) -> Self {
-        Self { times_secs, path, sampler: Sampler::new(), places: None }
-    }
-
-    fn turns(&mut self, track: Option<&'a RotationTrack>, rest: Rotor, out: &mut Streams<f64, 4>) {
-        let parts = |rotor: Rotor| [rotor.s, rotor.yz, rotor.zx, rotor.xy];
-        let Some(track) = track.filter(|track| !track.times.is_empty()) else {
-            for (stream, part) in out.parts_mut().into_iter().zip(parts(rest)) {
-                stream.fill(part);
-            }
-            return;
-        };
-        let Some(keys) = track.sound_for(self.times_secs.len()).filter(|_| track.is_slerp_alone(self.path))
-        else {
-            for (row, turn) in track.at_all_by(self.times_secs, self.path).into_iter().enumerate() {
-                out.set(row, parts(turn));
-            }
-            return;
-        };
-        let places = match self.places.take() {
-            Some(last) if same_times(last.0, &track.times) => self.places.insert(last),
-            _ => {
-                let tiles = self.times_secs.chunks(TILE).map(|secs| {
-                    let mut places = Places::new();
-                    places.find(&track.times, secs);
-                    places
-                });
-                self.places.insert((&track.times, tiles.collect()))
-            }
-        };
-        let mut start = 0;
-        for places in &places.1 {
-            let tile = out.parts_mut().map(|stream| &mut stream[start..start + places.len]);
-            self.sampler.sample(keys, places, tile);
-            start += places.len;
-        }
-    }
-}
-
-/// Whether they are surely the same; without looking at long lists.
-fn same_times(own: &Times, other: &Times) -> bool {
-    match (own, other) {
-        (Times::Listed(own), Times::Listed(other)) => Arc::ptr_eq(own, other),
-        (Times::Even { .. }, Times::Even { .. }) => own == other,
-        _ => false,
     }
 }
 

@@ -84,6 +84,14 @@ fn play(criterion: &mut Criterion) {
     group.warm_up_time(Duration::from_millis(300)).measurement_time(Duration::from_secs(2));
     group.bench_function("ours", |bencher| {
         bencher.iter(|| {
+            let mut playing = clip.playing(black_box(&times), None);
+            for joint in 0..JOINTS {
+                black_box(playing.rotations(joint));
+            }
+        });
+    });
+    group.bench_function("ours, each joint by itself", |bencher| {
+        bencher.iter(|| {
             for joint in 0..JOINTS {
                 black_box(clip.rotations_at(joint, black_box(&times)));
             }

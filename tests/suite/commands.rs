@@ -3,6 +3,7 @@
 #![expect(clippy::unwrap_used, reason = "the helpers of a test fail as the test does")]
 
 use std::collections::BTreeSet;
+use std::fmt::Write as _;
 use std::path::{Path, PathBuf};
 use std::process::{Command, Stdio};
 
@@ -677,6 +678,18 @@ fn columns_of_another_make_can_be_named() {
     let (_, joint) = sample["joints"].as_object().unwrap().iter().next().unwrap();
     let half = std::f64::consts::FRAC_1_SQRT_2;
     assert_close!(numbers::<4>(&joint["rotation"][0]), [0.0, half, 0.0, half], 1e-5);
+    // What is mended is read back for its sheet as it was read before: here a sign that flips, at 250 and 750 ms.
+    let mut rows = "stamp,real,i,j,k\n".to_owned();
+    for row in 0..40 {
+        let (sine, cosine) = (0.02 * f64::from(row)).sin_cos();
+        let sign = if (10..30).contains(&row) { -1.0 } else { 1.0 };
+        let _ = writeln!(rows, "{},{:.6},0,{:.6},0", 25 * row, sign * cosine, sign * sine);
+    }
+    bench.write("flip.csv", rows.as_bytes());
+    bench.run(&format!("mend flip.csv -o mended.csv --proof sheet.json {named}")).expect(0);
+    let sheet: Value = serde_json::from_slice(&bench.read("sheet.json")).unwrap();
+    assert!(number(&sheet["max_change_deg"]) < 1e-6, "{sheet}");
+    assert!(bench.run(&format!("snags mended.csv {named}")).expect(0).stdout.contains("no snags"));
     let wrong = bench.run("snags sensor.csv --time-unit hours").expect(2);
     assert!(wrong.stderr.contains("expected s, ms or us, found `hours`"), "{}", wrong.stderr);
 }

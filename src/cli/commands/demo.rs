@@ -12,7 +12,7 @@ use crate::cli::output::text::ClipReport;
 use crate::cli::output::{Output, text};
 use crate::clip::Clip;
 use crate::demo::{DemoScene, SCENES};
-use crate::exchange::{self, Guard, disk};
+use crate::exchange::{self, Guard, OpenOptions, disk};
 use crate::proof::Sheet;
 use crate::raster::spread_times;
 
@@ -43,7 +43,7 @@ fn do_scene(scene: &DemoScene, folder: &Path, output: &mut Output) -> Result<(),
     disk::write(&clip_path, scene.clip_bytes)?;
     disk::write(&folder.join(scene.scene_file), scene.scene_bytes)?;
 
-    let mut input = input::read_back(&clip_path, output)?;
+    let mut input = input::read_back(&clip_path, &OpenOptions::default(), output)?;
     let before = input.clip().clone();
     let (mended, snags, mends) = mend_clip(&clip_path, &before, None, &Choice::safe())?;
     let label = input.source.clip_label(0);
@@ -71,7 +71,7 @@ fn do_scene(scene: &DemoScene, folder: &Path, output: &mut Output) -> Result<(),
         output.notes(&written, &told.notes);
         output.say(&format!("wrote {}", written.display()));
     }
-    let after = input::read_back(&written, output)?;
+    let after = input::read_back(&written, &OpenOptions::default(), output)?;
     let sheet = sheet_of(&input, &after, &[(0, 0)], &input.limits, SheetFormat::Html)?;
     for (extension, format) in [("html", SheetFormat::Html), ("json", SheetFormat::Json)] {
         write(&sheet, &folder.join(format!("{}-proof.{extension}", scene.name)), format, output)?;

@@ -9,7 +9,7 @@ use crate::cli::error::CliError;
 use crate::cli::input::{self, Input};
 use crate::cli::output::Output;
 use crate::cli::progress::ProgressLine;
-use crate::exchange::{Guard, disk};
+use crate::exchange::{Guard, OpenOptions, disk};
 use crate::limit::Limits;
 use crate::proof::{self, FileFacts, ProofError, Sheet, sheet_html, sheet_json};
 
@@ -62,7 +62,8 @@ pub(super) fn write_sheet(
     format: SheetFormat,
     output: &mut Output,
 ) -> Result<(), CliError> {
-    let after = input::read_back(written, output)?;
+    let options = OpenOptions::default().or_as_remembered(&before.source.reading);
+    let after = input::read_back(written, &options, output)?;
     // Where the new format holds one clip, it is the first of those chosen.
     let clips: Vec<(usize, usize)> = if after.source.clips.len() == before.source.clips.len() {
         before.chosen.iter().map(|&index| (index, index)).collect()

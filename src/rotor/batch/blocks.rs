@@ -87,7 +87,6 @@ pub(super) fn each_block<F: Real, const I: usize, const O: usize, const ROWS: us
     mut kernel: impl FnMut([&Column<F, ROWS>; I], [&mut Column<F, ROWS>; O]),
 ) {
     let len = common_len(&inputs, &outputs);
-    let mut found = [[F::ZERO; ROWS]; O];
     let whole = len - len % ROWS;
     for start in (0..whole).step_by(ROWS) {
         let block: [&Column<F, ROWS>; I] = std::array::from_fn(|part| block_at(inputs[part], start));
@@ -98,7 +97,7 @@ pub(super) fn each_block<F: Real, const I: usize, const O: usize, const ROWS: us
     let rest = len - whole;
     if rest > 0 {
         // Filled up with the last row, which is a sound argument where zeros might be none.
-        let mut block = [[F::ZERO; ROWS]; I];
+        let (mut block, mut found) = ([[F::ZERO; ROWS]; I], [[F::ZERO; ROWS]; O]);
         for (column, stream) in block.iter_mut().zip(inputs) {
             column[..rest].copy_from_slice(&stream[whole..]);
             column[rest..].fill(stream[len - 1]);

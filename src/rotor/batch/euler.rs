@@ -91,9 +91,8 @@ fn rotors<const PROPER: bool>(
         signs[row] = 1.0;
     }
     // Seldom is an angle beyond half a turn; without one nothing has to be taken off.
-    let are_short = angles.iter().all(|angles| {
-        angles.iter().fold(true, |all, angle| all & (angle.abs() <= MOST_SHORT))
-    });
+    let are_short =
+        angles.iter().all(|angles| angles.iter().fold(true, |all, angle| all & (angle.abs() <= MOST_SHORT)));
     for axis in 0..3 {
         if are_short {
             for row in 0..ROWS {

@@ -1,6 +1,6 @@
 //! Products of rotors, and rotors applied to vectors.
 
-use super::blocks::each_row;
+use super::blocks::{Column, each_block, each_row};
 use super::level::Level;
 use super::real::Real;
 use super::streams::{Parts, PartsMut};
@@ -102,19 +102,39 @@ pub fn carry_bone<F: Real>(
     level.run(
         #[inline(always)]
         || {
-            each_row(
+            let (mut turns, mut places) = ([[F::ZERO; CARRIED]; 4], [[F::ZERO; CARRIED]; 3]);
+            each_block(
                 [p0, p1, p2, p3, px, py, pz, t0, t1, t2, t3],
                 [w0, w1, w2, w3, wx, wy, wz],
                 #[inline(always)]
-                |[p0, p1, p2, p3, px, py, pz, t0, t1, t2, t3]: [F; 11]| {
-                    let [s, yz, zx, xy] = product([p0, p1, p2, p3], [t0, t1, t2, t3]);
-                    let [vx, vy, vz] = turned([p0, p1, p2, p3], place);
-                    [s, yz, zx, xy, px + vx, py + vy, pz + vz]
+                |[p0, p1, p2, p3, px, py, pz, t0, t1, t2, t3]: [&Column<F, CARRIED>; 11],
+                 out: [&mut Column<F, CARRIED>; 7]| {
+                    // In two short loops, as one that reads and writes eighteen rows is not made one of wide instructions.
+                    for row in 0..CARRIED {
+                        let parent = [p0[row], p1[row], p2[row], p3[row]];
+                        let found = product(parent, [t0[row], t1[row], t2[row], t3[row]]);
+                        for part in 0..4 {
+                            turns[part][row] = found[part];
+                        }
+                    }
+                    for row in 0..CARRIED {
+                        let parent = [p0[row], p1[row], p2[row], p3[row]];
+                        let [x, y, z] = turned(parent, place);
+                        places[0][row] = px[row] + x;
+                        places[1][row] = py[row] + y;
+                        places[2][row] = pz[row] + z;
+                    }
+                    for (out, found) in out.into_iter().zip(turns.iter().chain(&places)) {
+                        *out = *found;
+                    }
                 },
             );
         },
     );
 }
+
+/// Rows that are carried from a joint to the next together.
+const CARRIED: usize = 32;
 
 /// The geometric product.
 #[inline(always)]
