@@ -16,7 +16,7 @@ use super::times::Times;
 /// once for all joints in a row that have their keys at the same times, as most of a clip do.
 ///
 /// ```
-/// # use turnwright::clip::{Clip, PathKind};
+/// # use turnwright::clip::Clip;
 /// # fn largest_turn(clip: &Clip) -> f64 {
 /// let times: Vec<f64> = (0..1000).map(|frame| f64::from(frame) / 120.0).collect();
 /// let mut playing = clip.playing(&times, None);
@@ -48,6 +48,11 @@ impl Clip {
 }
 
 impl Playing<'_> {
+    /// What is played.
+    pub const fn clip(&self) -> &Clip {
+        self.clip
+    }
+
     /// A joint's turn relative to its parent at each of the times; its rest where nothing turns it.
     ///
     /// # Panics

@@ -1,10 +1,10 @@
 //! The pictures of a proof sheet: turn maps before and after, and the skeleton where it changed most.
 
-use crate::clip::{Clip, turns_between};
+use crate::clip::Clip;
 use crate::raster::{
     Camera, Canvas, Figure, FigureStyle, Girth, Image, ImageError, MapRow, Moment, SnagMark, StripStyle,
     Theme, TurnMap, chart_canvas, compose, contact_strip, draw_turn_map, full_scale, limbs_of_skeleton,
-    turn_map_height,
+    turn_map_height, turn_rates,
 };
 
 use super::measure::Measurement;
@@ -64,12 +64,14 @@ fn turn_maps(clips: [&Clip; 2], measurement: &Measurement, snags: [&[FoundSnag];
         joints.truncate(MOST_ROWS);
         joints.sort_by_key(|joint| joint.before_joint);
     }
+    let times: Vec<f64> = (0..clips[0].grid.count()).map(|frame| clips[0].grid.time(frame)).collect();
     let rows = [0, 1].map(|side: usize| -> Vec<MapRow> {
+        let mut playing = clips[side].playing(&times, None);
         joints
             .iter()
             .map(|joint| MapRow {
                 name: joint.label.clone(),
-                values: turn_rates(clips[side], [joint.before_joint, joint.after_joint][side], clips[0]),
+                values: turn_rates(&mut playing, [joint.before_joint, joint.after_joint][side], &times),
                 marks: snags[side]
                     .iter()
                     .filter(|snag| snag.joint == joint.label)
@@ -94,17 +96,6 @@ fn turn_maps(clips: [&Clip; 2], measurement: &Measurement, snags: [&[FoundSnag];
         playhead_secs: None,
         chosen: None,
     })
-}
-
-/// Degrees a second into each frame of `frames`, of a joint relative to its parent.
-fn turn_rates(clip: &Clip, joint: usize, frames: &Clip) -> Vec<f32> {
-    let count = frames.grid.count();
-    let Some(track) = clip.rotation(joint) else { return vec![0.0; count] };
-    let times: Vec<f64> = (0..count).map(|frame| frames.grid.time(frame)).collect();
-    let turns = turns_between(&track.at_all(&times));
-    let rates =
-        turns.iter().zip(times.windows(2)).map(|(turn, secs)| turn.to_degrees() / (secs[1] - secs[0]));
-    std::iter::once(0.0).chain(rates.map(|rate| rate as f32)).take(count).collect()
 }
 
 fn draw_maps(maps: &[TurnMap; 2], theme: &Theme) -> Image {

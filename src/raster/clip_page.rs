@@ -2,7 +2,7 @@
 
 use glam::{DVec3, Vec2};
 
-use crate::clip::{Clip, turns_between};
+use crate::clip::{Clip, Playing, turns_between};
 use crate::raster::camera::Camera;
 use crate::raster::canvas::Canvas;
 use crate::raster::chart::{Area, SMALL, SnagMark, draw_letter};
@@ -25,29 +25,31 @@ pub fn figure_of_clip(clip: &Clip, time_secs: f64, style: FigureStyle) -> Figure
 /// The rate at a frame is the turn from the frame before, by the short way; the first frame has the second one's. A
 /// frame whose rotation is broken has none.
 pub fn turn_rate_rows(clip: &Clip, snags: &[Snag]) -> Vec<MapRow> {
+    let times: Vec<f64> = (0..clip.grid.count()).map(|frame| clip.grid.time(frame)).collect();
+    let mut playing = clip.playing(&times, None);
     clip.skeleton
         .listed()
         .map(|joint| MapRow {
             name: clip.skeleton.label(joint).to_owned(),
-            values: turn_rates(clip, joint),
+            values: turn_rates(&mut playing, joint, &times),
             marks: marks_of_joint(snags, joint),
         })
         .collect()
 }
 
-fn turn_rates(clip: &Clip, joint: usize) -> Vec<f32> {
-    let count = clip.grid.count();
-    if clip.rotation(joint).is_none_or(|track| track.times.is_empty()) {
-        return vec![0.0; count];
+/// How fast a joint turns at each of `times_secs`, degrees a second: the turn from the time before, by the short way; the first has
+/// what the second has. What is broken has none, and a joint without keys stands still.
+pub fn turn_rates(playing: &mut Playing<'_>, joint: usize, times_secs: &[f64]) -> Vec<f32> {
+    if playing.clip().rotation(joint).is_none_or(|track| track.times.is_empty()) {
+        return vec![0.0; times_secs.len()];
     }
-    let times: Vec<f64> = (0..count).map(|frame| clip.grid.time(frame)).collect();
-    let turns = turns_between(&clip.rotations_at(joint, &times));
-    let mut rates = Vec::with_capacity(count);
-    for (turn, secs) in turns.into_iter().zip(times.windows(2)) {
+    let turns = turns_between(&playing.rotations(joint));
+    let mut rates = Vec::with_capacity(times_secs.len());
+    for (turn, secs) in turns.into_iter().zip(times_secs.windows(2)) {
         let rate = (turn / (secs[1] - secs[0])).to_degrees();
         rates.push(if rate.is_finite() { rate as f32 } else { f32::NAN });
     }
-    if count > 0 {
+    if !times_secs.is_empty() {
         rates.insert(0, rates.first().copied().unwrap_or(0.0));
     }
     rates

@@ -24,7 +24,7 @@ mod turn_map;
 pub use camera::{Bounds, Camera, Lens, Projection, Ray, StraightView, View};
 pub use canvas::{Canvas, Dash, Hidden, Stroke};
 pub use chart::{Area, Scale, SnagMark, decimal_step, degree_step, format_secs};
-pub use clip_page::{ClipPage, clip_page, figure_of_clip, spread_times, turn_rate_rows};
+pub use clip_page::{ClipPage, clip_page, figure_of_clip, spread_times, turn_rate_rows, turn_rates};
 pub use disc::{PlaneDisc, ReachCone};
 pub use figure::{Figure, FigureLimb, FigureStyle, Girth, limbs_of_skeleton};
 pub use floor::Floor;

@@ -7,6 +7,16 @@ use super::{Bivector, Motion, Rotor};
 /// `t` may leave 0 to 1: the turn is carried on. At `t == 0` and `t == 1` it gives the ends exactly (`b` with the sign
 /// that is near `a`). Where the two are exactly half a turn apart (dot 0) it turns from `a` as the stored sign says.
 ///
+/// ```
+/// use turnwright::rotor::{Bivector, Rotor, slerp};
+///
+/// let turned = |deg| Rotor::from_plane_angles(Bivector::from_degrees([0.0, 0.0, deg]));
+/// let third = slerp(turned(30.0), turned(-60.0), 1.0 / 3.0);
+/// assert!(third.turn_to(turned(0.0)) < 1e-15);
+/// // 340° one way round is 20° the other.
+/// assert!(slerp(turned(-170.0), turned(170.0), 0.5).turn_to(turned(180.0)) < 1e-15);
+/// ```
+///
 /// Source: Shoemake 1985, "Animating rotation with quaternion curves".
 #[must_use]
 pub fn slerp(a: Rotor, b: Rotor, t: f64) -> Rotor {
@@ -43,6 +53,16 @@ pub fn slerp_as_signed(a: Rotor, b: Rotor, t: f64) -> Rotor {
 
 /// Spherical quadrangle: from `a` to `b`, pulled by the inner points `inner_a` and `inner_b`.
 /// The four must be aligned beforehand; nothing is aligned inside.
+///
+/// ```
+/// use turnwright::rotor::{Bivector, Rotor, squad, squad_inner};
+///
+/// // Keys that turn at one rate in one plane: squad keeps that rate.
+/// let key = |deg| Rotor::from_plane_angles(Bivector::from_degrees([0.0, deg, 0.0]));
+/// let [before, a, b, after] = [0.0, 40.0, 80.0, 120.0].map(key);
+/// let (inner_a, inner_b) = (squad_inner(before, a, b), squad_inner(a, b, after));
+/// assert!(squad(a, inner_a, inner_b, b, 0.25).turn_to(key(50.0)) < 1e-15);
+/// ```
 ///
 /// Source: Shoemake 1987, "Quaternion calculus and fast animation".
 #[must_use]

@@ -14,6 +14,22 @@ use super::{Bivector, Motion, Rotor};
 ///
 /// All keys hang together: moving one changes every segment a little, the far ones hardly.
 ///
+/// ```
+/// use turnwright::rotor::{Bivector, EndRates, RotationSpline, Rotor, SplineError};
+///
+/// let key = |degrees| Rotor::from_plane_angles(Bivector::from_degrees(degrees));
+/// let keys = [key([0.0; 3]), key([40.0, 0.0, 0.0]), key([40.0, 60.0, 0.0]), key([0.0, 0.0, 110.0])];
+/// let spline = RotationSpline::new(&[0.0, 1.0, 1.5, 3.0], &keys, EndRates::Natural)?;
+/// // Through the keys, and with one rate and one acceleration on both sides of each.
+/// assert!(spline.at(1.5).turn_to(keys[2]) < 1e-14);
+/// let [before, after] = [1.5 - 1e-9, 1.5 + 1e-9].map(|secs| spline.acceleration(secs));
+/// assert!((after - before).length() < 1e-6);
+/// // Many times at once.
+/// let times: Vec<f64> = (0..360).map(|frame| f64::from(frame) / 120.0).collect();
+/// assert_eq!(spline.at_all(&times).len(), times.len());
+/// # Ok::<(), SplineError>(())
+/// ```
+///
 /// Source: Park & Ravani 1997, "Smooth invariant interpolation of rotations", ACM TOG 16(3); Kang & Park 1999, "Cubic
 /// spline algorithms for orientation interpolation".
 #[derive(Clone, Debug)]
