@@ -175,7 +175,9 @@ mod tests {
         let parts = parts.finish(times);
         assert!(parts.changed_keys(&whole).is_empty());
         let bits = |track: &RotationTrack| {
-            let of = |key: &Rotor| [key.s, key.yz, key.zx, key.xy].map(f64::to_bits);
+            // What is no number has no sign that would mean anything.
+            let bits = |part: f64| if part.is_nan() { f64::NAN.to_bits() } else { part.to_bits() };
+            let of = |key: &Rotor| [key.s, key.yz, key.zx, key.xy].map(bits);
             track.keys.iter().map(of).collect::<Vec<_>>()
         };
         assert_eq!(bits(&parts), bits(&whole));

@@ -111,6 +111,8 @@ impl System<'_> {
     fn near(&self, guess: &[DVec3]) -> Option<Vec<DVec3>> {
         /// 3 to 5 are usual.
         const MOST_ROUNDS: usize = 12;
+        /// Of the largest rate. Over a segment this turns by less than what the rounding of its ends does.
+        const SETTLED: f64 = 4e-15;
         let mut rates = Vec::with_capacity(guess.len());
         let plain = self.eliminated(None, Vec::new());
         plain.solve(guess, &mut rates);
@@ -123,7 +125,7 @@ impl System<'_> {
             std::mem::swap(&mut rates, &mut next);
             // What all later rounds together will move.
             let share = if change.is_finite() { moved / change } else { 0.5 };
-            if moved == 0.0 || moved * share <= 1e-16 * size {
+            if moved == 0.0 || moved * share <= SETTLED * size {
                 return Some(rates);
             }
             if share > 0.5 {
