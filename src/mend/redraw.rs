@@ -49,10 +49,8 @@ fn led(draft: &Draft, held: usize, keys: std::ops::RangeInclusive<usize>) -> Vec
     };
     let is_moving = beside.len() >= LEAD_FIT && !draft.is_held_after(held);
     let rate = fitted_rate(draft, held, beside).filter(|_| is_moving).unwrap_or(Bivector::ZERO);
-    keys.map(|key| {
-        (pose * Rotor::from_plane_angles(rate * (draft.secs(key) - draft.secs(held)))).normalize()
-    })
-    .collect()
+    keys.map(|key| (pose * Rotor::from_plane_angles(rate * (draft.secs(key) - draft.secs(held)))).normalize())
+        .collect()
 }
 
 /// Writes other poses from key `first` on, with the tangents that follow from them where the track has such.

@@ -93,7 +93,7 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
     let Some(rough) = Roughness::new(&scan, LEAST_KEYS) else { return Vec::new() };
     let mut snags = Vec::new();
-    let mut alike = Alike::new(&scan, &rough);
+    let alike = Alike::new(&scan, &rough);
     let mut key = 1;
     while key + 1 < rough.len() {
         let threshold = threshold(&rough, key);

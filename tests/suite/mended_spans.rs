@@ -76,8 +76,11 @@ fn a_spike_is_found_and_mended_alike_at_any_rate_and_in_any_unit() {
             assert_eq!(survey(&sound, &SurveyOptions::default(), &Unwatched).unwrap().snags, []);
             let (broken, first, last) = with_spike(&sound);
             let found = survey(&broken, &SurveyOptions::default(), &Unwatched).unwrap();
-            let keys: Vec<_> =
-                found.snags.iter().map(|snag| (snag.kind, snag.joint, snag.first_key, snag.last_key)).collect();
+            let keys: Vec<_> = found
+                .snags
+                .iter()
+                .map(|snag| (snag.kind, snag.joint, snag.first_key, snag.last_key))
+                .collect();
             assert_eq!(keys, [(SnagKind::Spike, 1, first, last)], "{rate} a second");
             let (mended, truth) = (found.mended.rotation(1).unwrap(), sound.rotation(1).unwrap());
             for key in first..=last {

@@ -460,13 +460,12 @@ const LEAST_PRECISION: f64 = 0.97;
 
 fn least_recall(kind: SnagKind, coarse: bool) -> f64 {
     match kind {
-        SnagKind::Spike if coarse => 0.78,
+        SnagKind::Spike if coarse => 0.87,
         SnagKind::HalfTurn | SnagKind::Spike => 0.95,
         SnagKind::Stuck if coarse => 0.87,
-        SnagKind::Jitter if coarse => 0.35,
+        SnagKind::Jitter if coarse => 0.8,
         SnagKind::Stuck => 0.9,
-        // In clips of 24 or 30 frames a second noise of less than ten frames is not told from motion.
-        SnagKind::Jitter => 0.7,
+        SnagKind::Jitter => 0.94,
         _ => 0.98,
     }
 }
@@ -476,7 +475,8 @@ fn least_recall(kind: SnagKind, coarse: bool) -> f64 {
 fn most_error_deg(kind: SnagKind, coarse: bool, slerp: f64, was: f64) -> f64 {
     let most: f64 = match kind {
         SnagKind::SignFlip | SnagKind::Wrap | SnagKind::MirroredAngles | SnagKind::LongWay => 1e-3,
-        SnagKind::Stuck if coarse => slerp,
+        // Where it moves fast between few poses a gap of three is no better known than slerp tells.
+        SnagKind::Stuck | SnagKind::Spike if coarse => slerp,
         SnagKind::Stuck => 0.65 * slerp,
         SnagKind::Jitter if coarse => 0.6 * was,
         SnagKind::Jitter => 0.4 * was,

@@ -108,7 +108,9 @@ fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels) -> Vec<Span> {
         let (first, last) = kept
             .iter()
             .filter(|other| overlap(&span, other))
-            .fold((span.first, span.last), |(first, last), other| (first.min(other.first), last.max(other.last)));
+            .fold((span.first, span.last), |(first, last), other| {
+                (first.min(other.first), last.max(other.last))
+            });
         let is_overlapped = kept.iter().any(|other| overlap(&span, other));
         let inside = &levels.each[first.max(2)..(last + 1).min(levels.each.len() - 2).max(first.max(2))];
         let level = 0.5 * white::usual_loud(inside);
@@ -397,21 +399,13 @@ fn fitted(levels: &Levels, row: &Row, (start, end): (usize, usize), least: f64, 
 }
 
 /// The first key that shows noise, with another soon after.
-fn first_of_run(
-    levels: &Levels,
-    keys: Range<usize>,
-    shows: &impl Fn(&usize) -> bool,
-) -> Option<usize> {
+fn first_of_run(levels: &Levels, keys: Range<usize>, shows: &impl Fn(&usize) -> bool) -> Option<usize> {
     let shown: Vec<usize> = keys.filter(shows).collect();
     let near = 2 * levels.lag + 1;
     shown.windows(3).find(|three| three[2] - three[0] <= 2 * near).map(|three| three[0])
 }
 
-fn last_of_run(
-    levels: &Levels,
-    keys: Range<usize>,
-    shows: &impl Fn(&usize) -> bool,
-) -> Option<usize> {
+fn last_of_run(levels: &Levels, keys: Range<usize>, shows: &impl Fn(&usize) -> bool) -> Option<usize> {
     let shown: Vec<usize> = keys.filter(shows).collect();
     let near = 2 * levels.lag + 1;
     shown.windows(3).rev().find(|three| three[2] - three[0] <= 2 * near).map(|three| three[2])

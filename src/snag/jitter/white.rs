@@ -8,6 +8,7 @@
 //! else. The shares of the difference schemes are those of binomial coefficients; the limits were set on real clips with
 //! noise planted along one axis and three, so that neither way of trembling is needed.
 
+use std::cell::OnceCell;
 use std::f64::consts::PI;
 use std::ops::Range;
 
@@ -19,7 +20,8 @@ use super::{Levels, MIDDLE, Row, Span, first_of_run, last_of_run, level_of_all, 
 
 /// Windows are so many keys wide; what holds in them: neighbouring fourth differences go along by at most this, growth
 /// to twice the distance is at most that, and so much of it at most is what a joint near by does.
-const WIDTHS: [(usize, f64, f64, f64); 3] = [(8, -0.6, 1.8, 0.75), (14, -0.66, 1.6, 0.7), (24, -0.7, 1.4, 0.6)];
+const WIDTHS: [(usize, f64, f64, f64); 3] =
+    [(8, -0.6, 1.8, 0.75), (14, -0.66, 1.6, 0.7), (24, -0.7, 1.4, 0.6)];
 
 /// Noise below this, per axis, is not told.
 const LEAST_RAD: f64 = 0.45 / 180.0 * PI;
@@ -103,7 +105,7 @@ struct Window {
 
 /// Spans of white noise in the keys around `where_loud`.
 pub(super) fn find(scan: &Scan<'_>, row: &Row, levels: &Levels, loud: &[Range<usize>]) -> Vec<Span> {
-    let mut judge = Judge { scan, row, levels, quiet: None, all: None, mirror: None };
+    let mut judge = Judge { scan, row, levels, quiet: None, all: None, mirror: OnceCell::new() };
     let mut hit = vec![false; row.len()];
     let mut any = false;
     for keys in loud {
@@ -129,7 +131,7 @@ struct Judge<'a> {
     /// Worked out when first asked for.
     quiet: Option<f64>,
     all: Option<f64>,
-    mirror: Option<Option<f64>>,
+    mirror: OnceCell<Option<f64>>,
 }
 
 impl Judge<'_> {
@@ -194,9 +196,9 @@ impl Judge<'_> {
     }
 
     /// What the joint on the other side does at its worst.
-    fn mirror(&mut self) -> Option<f64> {
+    fn mirror(&self) -> Option<f64> {
         let scan = self.scan;
-        *self.mirror.get_or_insert_with(|| {
+        *self.mirror.get_or_init(|| {
             let other = Scan::new(scan.clip, mirror_of(&scan.clip.skeleton, scan.joint)?)?;
             let row = Row::new(&other).filter(|row| row.len() >= 16)?;
             Some(level_of_share(&row.poses, 1.0))
@@ -207,17 +209,18 @@ impl Judge<'_> {
     fn done_near(&self, window: &Window) -> f64 {
         let skeleton = &self.scan.clip.skeleton;
         let joint = self.scan.joint;
-        let above = std::iter::successors(skeleton.parent_joint(joint), |&up| skeleton.parent_joint(up)).take(2);
+        let above =
+            std::iter::successors(skeleton.parent_joint(joint), |&up| skeleton.parent_joint(up)).take(2);
         let below = skeleton.children(joint).iter().copied();
         let below = below.clone().chain(below.flat_map(|child| skeleton.children(child).iter().copied()));
         let near = above.chain(below).chain(mirror_of(skeleton, joint));
         near.filter_map(|other| Scan::new(self.scan.clip, other))
             .filter(|other| other.track.times == self.scan.track.times)
-            .map(|other| self.share_of(window, &other))
+            .map(|other| Self::share_of(window, &other))
             .fold(0.0, f64::max)
     }
 
-    fn share_of(&self, window: &Window, other: &Scan<'_>) -> f64 {
+    fn share_of(window: &Window, other: &Scan<'_>) -> f64 {
         let (low, high) = (window.keys.start - 2, window.keys.end + 2);
         let mut before = other.track.sound_key(low);
         let poses: Vec<Rotor> = (low..high)
@@ -376,7 +379,8 @@ mod tests {
 
     #[test]
     fn rows_along_one_line_do_not_spread_and_rows_along_two_do() {
-        let line: Vec<Parts> = (0..8).map(|i| [0.0, f64::from(i) - 3.0, 2.0 * (f64::from(i) - 3.0), 0.0]).collect();
+        let line: Vec<Parts> =
+            (0..8).map(|i| [0.0, f64::from(i) - 3.0, 2.0 * (f64::from(i) - 3.0), 0.0]).collect();
         assert!(spread(&line) < 1e-9, "{}", spread(&line));
         let two = [[3.0, 0.0, 0.0, 0.0], [0.0, 2.0, 0.0, 0.0], [-3.0, 0.0, 0.0, 0.0], [0.0, -2.0, 0.0, 0.0]];
         assert!((spread(&two) - 2.0 / 3.0).abs() < 1e-6, "{}", spread(&two));

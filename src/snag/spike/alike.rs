@@ -5,6 +5,7 @@
 //! the other leg too, and again in the next cycle: there some keys turn against each other by the same angles, whichever way
 //! the two joints' own axes lie. A fault is done by no other.
 
+use std::cell::OnceCell;
 use std::f64::consts::PI;
 
 use crate::rotor::Rotor;
@@ -50,19 +51,23 @@ pub(super) struct Alike<'a> {
     scan: &'a Scan<'a>,
     rough: &'a Roughness,
     is_coarse: bool,
-    mirror: Option<Option<Roughness>>,
+    mirror: OnceCell<Option<Roughness>>,
 }
 
 impl<'a> Alike<'a> {
     pub(super) fn new(scan: &'a Scan<'a>, rough: &'a Roughness) -> Self {
         let is_coarse = scan.track.times.median_step().is_some_and(|step_secs| step_secs > FINE_SECS);
-        Self { scan, rough, is_coarse, mirror: None }
+        Self { scan, rough, is_coarse, mirror: OnceCell::new() }
     }
 
     /// How sure it is that `run` is a spike because the joint moves like that nowhere else, and the other side neither.
-    pub(super) fn stands_alone(&mut self, run: Run) -> Option<f64> {
+    pub(super) fn stands_alone(&self, run: Run) -> Option<f64> {
         let (scan, rough) = (self.scan, self.rough);
-        if !self.is_coarse || run.peak < LEAST_RAD || !may_be_spike(scan, rough, run) || !comes_back(rough, run) {
+        if !self.is_coarse
+            || run.peak < LEAST_RAD
+            || !may_be_spike(scan, rough, run)
+            || !comes_back(rough, run)
+        {
             return None;
         }
         let usual = rough.usual_without(run.first, run.last);
@@ -72,9 +77,11 @@ impl<'a> Alike<'a> {
             return None;
         }
         let beside = |key: usize| key + 3 >= run.first && key <= run.last + 3;
-        let elsewhere =
-            (1..rough.len() - 1).filter(|key| !beside(*key)).map(|key| rough.residual[key]).fold(0.0, f64::max);
-        let mirror = self.mirror.get_or_insert_with(|| {
+        let elsewhere = (1..rough.len() - 1)
+            .filter(|key| !beside(*key))
+            .map(|key| rough.residual[key])
+            .fold(0.0, f64::max);
+        let mirror = self.mirror.get_or_init(|| {
             let other = Scan::new(scan.clip, mirror_of(&scan.clip.skeleton, scan.joint)?)?;
             Roughness::new(&other, LEAST_KEYS)
         });

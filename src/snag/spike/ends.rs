@@ -27,9 +27,9 @@ pub(super) const CONFIDENCE: f64 = 0.55;
 
 /// The runs at the ends of a joint's keys that lie off where the motion beside them leads to.
 pub(super) fn find<'a>(scan: &'a Scan<'a>, rough: &'a Roughness) -> impl Iterator<Item = Run> + 'a {
-    [true, false].into_iter().filter_map(move |at_start| {
-        (1..=LONGEST).find_map(|length| off(scan, rough, at_start, length))
-    })
+    [true, false]
+        .into_iter()
+        .filter_map(move |at_start| (1..=LONGEST).find_map(|length| off(scan, rough, at_start, length)))
 }
 
 fn off(scan: &Scan<'_>, rough: &Roughness, at_start: bool, length: usize) -> Option<Run> {
