@@ -15,9 +15,11 @@ mod regress;
 mod stuck;
 mod survey;
 mod take_out;
+mod tips;
 
 pub use apply::{apply, apply_all, change_rad};
 pub use error::MendError;
 pub use loop_close::{LoopOptions, LoopReport, close_loop};
 pub use plant::{Miss, PlantOptions, PlantReport, faded, move_end, plant_feet, plant_feet_at};
 pub use survey::{Survey, SurveyOptions, survey};
+pub use tips::change_at_tips;

@@ -19,19 +19,38 @@ const TRIALS: usize = 6;
 /// Above this turn across the gap the bridge has no sure side: slerp.
 const WIDE_RAD: f64 = 2.6;
 
-/// Draws `first..=last` anew. Where only one side has sound keys the nearest is held; without any there is no turn.
+/// With sound keys on one side only, so few keys go on at the rate beside them, fitted over so many; more hold the nearest.
+const LEAD_KEYS: usize = 2;
+const LEAD_FIT: usize = 4;
+
+/// Draws `first..=last` anew. Where only one side has sound keys the motion beside leads on, or is held; without any there is no turn.
 pub(super) fn redraw(draft: &mut Draft, first: usize, last: usize) {
     let (left, right) = (draft.sound_before(first), draft.sound_after(last));
     let poses: Vec<Rotor> = match (left, right) {
         (Some(left), Some(right)) if !draft.is_held_after(left) => {
             bridge(draft, left, right).skip(first - left - 1).take(last + 1 - first).collect()
         }
+        (Some(held), None) | (None, Some(held)) if last - first < LEAD_KEYS => led(draft, held, first..=last),
         (Some(held), _) | (None, Some(held)) => {
             vec![draft.unit(held).unwrap_or(Rotor::IDENTITY); last + 1 - first]
         }
         (None, None) => vec![Rotor::IDENTITY; last + 1 - first],
     };
     write(draft, first, &poses);
+}
+
+/// Poses of a few keys at an end: where the sound motion beside them leads to.
+fn led(draft: &Draft, held: usize, keys: std::ops::RangeInclusive<usize>) -> Vec<Rotor> {
+    let pose = draft.unit(held).unwrap_or(Rotor::IDENTITY);
+    let beside = if *keys.start() > held {
+        held.saturating_sub(LEAD_FIT)..held
+    } else {
+        held + 1..(held + 1 + LEAD_FIT).min(draft.len())
+    };
+    let is_moving = beside.len() >= LEAD_FIT && !draft.is_held_after(held);
+    let rate = fitted_rate(draft, held, beside).filter(|_| is_moving).unwrap_or(Bivector::ZERO);
+    keys.map(|key| (pose * Rotor::from_plane_angles(rate * (draft.secs(key) - draft.secs(held)))).normalize())
+        .collect()
 }
 
 /// Writes other poses from key `first` on, with the tangents that follow from them where the track has such.

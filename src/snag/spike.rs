@@ -1,5 +1,8 @@
 //! One to a few keys that lie far off the motion around them.
 
+mod alike;
+mod ends;
+
 use std::f64::consts::PI;
 
 use crate::clip::Clip;
@@ -9,6 +12,7 @@ use super::roughness::{Roughness, angle_to_way};
 use super::scan::{Finding, Scan};
 use super::stuck::is_same;
 use super::{Remedy, Snag, SnagKind};
+use alike::Alike;
 
 /// With fewer keys nothing can be said about what is usual.
 const LEAST_KEYS: usize = 8;
@@ -89,6 +93,7 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
     let Some(rough) = Roughness::new(&scan, LEAST_KEYS) else { return Vec::new() };
     let mut snags = Vec::new();
+    let alike = Alike::new(&scan, &rough);
     let mut key = 1;
     while key + 1 < rough.len() {
         let threshold = threshold(&rough, key);
@@ -98,8 +103,9 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
         }
         let end = stretch(&rough, key, threshold);
         if let Some(run) = best_run(&rough, key, end)
-            && let Some(confidence) =
-                judge(&scan, &rough, run, LEAST_PRODUCT).or_else(|| beside_another(&scan, &rough, run))
+            && let Some(confidence) = judge(&scan, &rough, run, LEAST_PRODUCT)
+                .or_else(|| beside_another(&scan, &rough, run))
+                .or_else(|| alike.stands_alone(run))
         {
             snags.push(spike(&scan, run, confidence));
             key = end.max(run.last) + 1;
@@ -107,6 +113,7 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
             key += 1;
         }
     }
+    snags.extend(ends::find(&scan, &rough).map(|run| spike(&scan, run, ends::CONFIDENCE)));
     snags
 }
 
@@ -215,11 +222,7 @@ fn beside_another(scan: &Scan<'_>, rough: &Roughness, run: Run) -> Option<f64> {
 
 /// Whether a run is a spike, and how sure that is, 0.5 to 1.
 fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Option<f64> {
-    if run.first <= START_KEYS
-        || run.last + END_KEYS >= rough.len()
-        || (run.first - 1..=run.last).any(|key| !scan.moves_after(key))
-        || is_rest(rough, run)
-    {
+    if !may_be_spike(scan, rough, run) {
         return None;
     }
     let span_secs = rough.secs[run.last + 1] - rough.secs[run.first - 1];
@@ -242,13 +245,23 @@ fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Op
         && score >= LEAST_SCORE
         && gain >= least_gain
         && score * gain >= least_product
-        && run.across
-            <= (STEP_SIZES * run.size).max(
-                USUAL_STEPS
-                    * rough.usual_step_without(run.first, run.last)
-                    * (run.last + 2 - run.first) as f64,
-            );
+        && comes_back(rough, run);
     is_spike.then(|| 1.0 - 0.5 * (LEAST_PRODUCT / (score * gain)).sqrt())
+}
+
+/// Whether a run has enough sound keys on both sides, and the joint neither jumps as its file says nor rests there.
+fn may_be_spike(scan: &Scan<'_>, rough: &Roughness, run: Run) -> bool {
+    run.first > START_KEYS
+        && run.last + END_KEYS < rough.len()
+        && (run.first - 1..=run.last).all(|key| scan.moves_after(key))
+        && !is_rest(rough, run)
+}
+
+/// Whether a run comes back to where it began, as nearly as the joint's motion near by would.
+fn comes_back(rough: &Roughness, run: Run) -> bool {
+    let keys = (run.last + 2 - run.first) as f64;
+    let usual = USUAL_STEPS * rough.usual_step_without(run.first, run.last) * keys;
+    run.across <= (STEP_SIZES * run.size).max(usual)
 }
 
 /// Whether the keys of a run do no more than repeat the one before them: the joint is stuck there.

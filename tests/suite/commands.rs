@@ -243,10 +243,14 @@ fn mending_bvh_changes_the_numbers_of_the_snags_and_no_others() {
     assert_eq!(keys(clip), expected);
     for snag in list(&clip["snags"]) {
         let expected: BTreeSet<&str> =
-            SNAG_KEYS.into_iter().chain(["mended", "left", "change_deg"]).collect();
+            SNAG_KEYS.into_iter().chain(["mended", "left", "change_deg", "change_length"]).collect();
         assert_eq!(keys(snag), expected);
         assert_eq!(snag["mended"], true);
+        // What no pose changes by moves no limb.
+        assert!(number(&snag["change_length"]) >= 0.0);
+        assert!(number(&snag["change_deg"]) > 0.0 || number(&snag["change_length"]) == 0.0, "{snag}");
     }
+    assert!(list(&clip["snags"]).iter().any(|snag| number(&snag["change_length"]) > 0.0));
     assert_close!(number(&clip["max_change_deg"]), 180.0, 1.0);
 
     let (before, after) = (bench.text("deckhand.bvh"), bench.text("mended.bvh"));

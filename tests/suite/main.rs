@@ -21,6 +21,7 @@
 //! | `hostile` | a hundred thousand damaged files of every format: no panic, no hang, no memory beyond the bound |
 //! | `layers` | layers point down only, and the window's libraries stay in `app` |
 //! | `limits` | joint limits: clamps against outside values, what holds for every limit, limits learned; the preset on the real clips |
+//! | `mended_spans` | what mends keep to: rates that meet at borders, the same at any rate and in any unit |
 //! | `path_export` | paths, spacings and meant turns in files, played as each format says |
 //! | `paths` | paths between keys, spacing, meant turns: 50-digit derivatives, scipy, and what holds for every track |
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
@@ -78,6 +79,7 @@ mod gui_window;
 mod hostile;
 mod layers;
 mod limits;
+mod mended_spans;
 mod path_export;
 mod paths;
 mod planter;

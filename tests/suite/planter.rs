@@ -68,6 +68,8 @@ struct Planted {
     joint: usize,
     first: usize,
     last: usize,
+    /// How large it is, in degrees; 0 where that says nothing.
+    size_deg: f64,
 }
 
 /// The files that faults are planted into.
@@ -193,7 +195,7 @@ fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Opti
     let track = clip.rotation(joint)?;
     let count = track.keys.len();
     let poses: Vec<Rotor> = (0..count).map(|key| track.sound_key(key)).collect();
-    let planted = |(first, last): (usize, usize)| Planted { kind, joint, first, last };
+    let planted = |(first, last): (usize, usize)| Planted { kind, joint, first, last, size_deg: 0.0 };
     Some(match kind {
         SnagKind::BrokenValue => {
             let (first, last) = run(random, count, 1, 3, 2);
@@ -282,7 +284,7 @@ fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Opti
                     *pose * Rotor::from_plane_angles(Bivector::from_axis(axis * angle))
                 })
                 .collect();
-            (with_poses(track, first, &off), planted((first, last)))
+            (with_poses(track, first, &off), Planted { size_deg: size, ..planted((first, last)) })
         }
         // Needs limits: has tests of its own in `limits`.
         // Seams and slides are faults of the whole clip: `ground_faults` plants them.
@@ -325,7 +327,8 @@ fn plant(random: &mut Random, clip: &Clip, joint: usize, kind: SnagKind) -> Opti
                     poses[key] * Rotor::from_plane_angles(Bivector::from_axis(own * sigma))
                 })
                 .collect();
-            (with_poses(track, first, &shaken), planted((first, last)))
+            let size_deg = sigma.to_degrees();
+            (with_poses(track, first, &shaken), Planted { size_deg, ..planted((first, last)) })
         }
     })
 }
@@ -386,6 +389,10 @@ fn trial(ground: &Ground, seed: u64, alone: Option<SnagKind>, table: &mut Table)
             continue;
         }
         let kinds = alone.as_ref().map_or_else(|| kinds(track), std::slice::from_ref);
+        let kinds: Vec<SnagKind> = kinds.iter().copied().filter(|kind| is_wanted(*kind)).collect();
+        if kinds.is_empty() {
+            continue;
+        }
         let kind = kinds[random.whole(0, kinds.len() - 1)];
         if let Some((track, planted)) = plant(&mut random, clip, joint, kind) {
             broken = broken.with_rotation(joint, track);
@@ -407,9 +414,10 @@ fn trial(ground: &Ground, seed: u64, alone: Option<SnagKind>, table: &mut Table)
                 .map(|snag| snag.text.as_str())
                 .collect();
             table.missed.push(format!(
-                "{seed} {} {label} {} frames {} to {}: {instead:?}",
+                "{seed} {} {label} {} of {:.1}° frames {} to {}: {instead:?}",
                 ground.name,
                 planted.kind,
+                planted.size_deg,
                 frame(planted.first),
                 frame(planted.last)
             ));
@@ -452,13 +460,12 @@ const LEAST_PRECISION: f64 = 0.97;
 
 fn least_recall(kind: SnagKind, coarse: bool) -> f64 {
     match kind {
-        SnagKind::Spike if coarse => 0.78,
+        SnagKind::Spike if coarse => 0.87,
         SnagKind::HalfTurn | SnagKind::Spike => 0.95,
         SnagKind::Stuck if coarse => 0.87,
-        SnagKind::Jitter if coarse => 0.35,
+        SnagKind::Jitter if coarse => 0.8,
         SnagKind::Stuck => 0.9,
-        // In clips of 24 or 30 frames a second noise of less than ten frames is not told from motion.
-        SnagKind::Jitter => 0.7,
+        SnagKind::Jitter => 0.94,
         _ => 0.98,
     }
 }
@@ -468,7 +475,8 @@ fn least_recall(kind: SnagKind, coarse: bool) -> f64 {
 fn most_error_deg(kind: SnagKind, coarse: bool, slerp: f64, was: f64) -> f64 {
     let most: f64 = match kind {
         SnagKind::SignFlip | SnagKind::Wrap | SnagKind::MirroredAngles | SnagKind::LongWay => 1e-3,
-        SnagKind::Stuck if coarse => slerp,
+        // Where it moves fast between few poses a gap of three is no better known than slerp tells.
+        SnagKind::Stuck | SnagKind::Spike if coarse => slerp,
         SnagKind::Stuck => 0.65 * slerp,
         SnagKind::Jitter if coarse => 0.6 * was,
         SnagKind::Jitter => 0.4 * was,
@@ -477,8 +485,19 @@ fn most_error_deg(kind: SnagKind, coarse: bool, slerp: f64, was: f64) -> f64 {
     if kind == SnagKind::Jitter { most } else { most.min(slerp + 1e-6) }
 }
 
+/// Whether a kind is wanted: `PLANTER_KINDS` names those that are, for a quick look at one of them.
+fn is_wanted(kind: SnagKind) -> bool {
+    std::env::var("PLANTER_KINDS").map_or(true, |names| names.split(',').any(|name| name == kind.name()))
+}
+
+/// Seeds other than those that anything was tuned on: `PLANTER_SEED` is added to all.
+fn other_seeds() -> u64 {
+    std::env::var("PLANTER_SEED").ok().and_then(|seed| seed.parse().ok()).unwrap_or(0)
+}
+
 /// Plants into every clip of the files that `wanted` picks, with seeds from `seed` on.
 fn table(seed: u64, alone: Option<SnagKind>, wanted: impl Fn(&Clip) -> bool) -> Option<(Table, f64, usize)> {
+    let seed = seed + other_seeds();
     let mut table =
         Table { scores: BTreeMap::new(), missed: Vec::new(), wrong: Vec::new(), runs: Vec::new() };
     let (mut seed, mut minutes, mut clean_flags) = (seed, 0.0, 0);
@@ -568,7 +587,7 @@ fn planted_faults_in_short_loops_are_found_and_mended() {
 /// What lasts a while, in captures.
 #[test]
 fn planted_faults_that_last_are_found_and_mended() {
-    for (kind, seed) in LASTING.into_iter().zip([2001, 4001]) {
+    for (kind, seed) in LASTING.into_iter().zip([2001, 4001]).filter(|(kind, _)| is_wanted(*kind)) {
         let Some(table) = table(seed, Some(kind), |clip| clip.grid.count() > 60) else { return };
         check(&format!("{kind}, captures"), false, table);
     }
@@ -577,7 +596,7 @@ fn planted_faults_that_last_are_found_and_mended() {
 /// What lasts a while, in loops.
 #[test]
 fn planted_faults_that_last_in_short_loops_are_found_and_mended() {
-    for (kind, seed) in LASTING.into_iter().zip([3001, 5001]) {
+    for (kind, seed) in LASTING.into_iter().zip([3001, 5001]).filter(|(kind, _)| is_wanted(*kind)) {
         let Some(table) = table(seed, Some(kind), |clip| clip.grid.count() <= 60) else { return };
         check(&format!("{kind}, short loops"), true, table);
     }

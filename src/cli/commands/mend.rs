@@ -173,11 +173,17 @@ pub(super) fn mend_clip(
             .map_err(|source| CliError::Mend { path: path.to_owned(), source })?;
         Arc::new(result)
     };
-    let changes_rad = survey
+    let changes_rad: Vec<f64> = survey
         .changes_rad
         .iter()
         .zip(&mended)
         .map(|(&change, &taken)| if taken { change } else { 0.0 })
+        .collect();
+    let changes_length = survey
+        .snags
+        .iter()
+        .zip(&changes_rad)
+        .map(|(snag, &change)| if change > 0.0 { mend::change_at_tips(clip, &result, snag) } else { 0.0 })
         .collect();
     let max_change_rad = if mended.contains(&true) {
         let measured = proof::measure(clip, &result, &progress)
@@ -186,5 +192,5 @@ pub(super) fn mend_clip(
     } else {
         0.0
     };
-    Ok((result, survey.snags, MendReport { mended, changes_rad, max_change_rad }))
+    Ok((result, survey.snags, MendReport { mended, changes_rad, changes_length, max_change_rad }))
 }

@@ -42,6 +42,7 @@ fn snag(report: &ClipReport<'_>, index: usize, snag: &Snag) -> Value {
         object["mended"] = json!(mends.mended[index]);
         object["left"] = json!(!mends.mended[index]);
         object["change_deg"] = json!(mends.changes_rad[index].to_degrees());
+        object["change_length"] = json!(mends.changes_length[index]);
     }
     object
 }

@@ -30,6 +30,8 @@ pub(in crate::cli) struct MendReport {
     pub(in crate::cli) mended: Vec<bool>,
     /// The largest change of orientation each mend made, radians.
     pub(in crate::cli) changes_rad: Vec<f64>,
+    /// How far each mend moved the ends of limbs, in the clip's length.
+    pub(in crate::cli) changes_length: Vec<f64>,
     /// The largest change of the clip as it plays, radians.
     pub(in crate::cli) max_change_rad: f64,
 }

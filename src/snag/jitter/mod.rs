@@ -5,7 +5,10 @@
 //! the two together tell noise from motion, without a word about how fast the joint may be; how much noise is usual is told
 //! by the joint's other times, and by the joint on the other side of the body.
 
+mod white;
+
 use std::f64::consts::PI;
+use std::ops::Range;
 
 use crate::clip::Clip;
 use crate::rotor::Rotor;
@@ -82,12 +85,48 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
             break;
         }
         let Some(levels) = Levels::new(&row, lag) else { break };
-        let spans = spans(&scan, &row, &levels);
+        let mut spans = spans(&scan, &row, &levels);
+        if lag == 1 {
+            let loud = levels.loud();
+            if !loud.is_empty() {
+                spans = joined(spans, white::find(&scan, &row, &levels, &loud), &levels);
+            }
+        }
         if !spans.is_empty() {
             return spans.into_iter().map(|span| snag(&scan, &levels, span)).collect();
         }
     }
     Vec::new()
+}
+
+/// Two lists of spans as one, in order. Of two that overlap it is both together where they tremble all along, else the one
+/// of `others`, which are fitted closer.
+fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels) -> Vec<Span> {
+    let overlap = |a: &Span, b: &Span| a.first <= b.last + 2 && b.first <= a.last + 2;
+    let mut kept: Vec<Span> = others;
+    for span in spans {
+        let (first, last) = kept
+            .iter()
+            .filter(|other| overlap(&span, other))
+            .fold((span.first, span.last), |(first, last), other| {
+                (first.min(other.first), last.max(other.last))
+            });
+        let is_overlapped = kept.iter().any(|other| overlap(&span, other));
+        let inside = &levels.each[first.max(2)..(last + 1).min(levels.each.len() - 2).max(first.max(2))];
+        let level = 0.5 * white::usual_loud(inside);
+        let trembling = inside.iter().filter(|own| **own >= level).count();
+        if is_overlapped && trembling * 4 < inside.len() * 3 {
+            continue;
+        }
+        let clarity = kept
+            .iter()
+            .filter(|other| overlap(&span, other))
+            .fold(span.clarity, |clarity, other| clarity.max(other.clarity));
+        kept.retain(|other| !overlap(&span, other));
+        kept.push(Span { first, last, clarity, ..span });
+    }
+    kept.sort_by_key(|span| span.first);
+    kept
 }
 
 /// A joint's poses and their times.
@@ -168,6 +207,21 @@ impl Levels {
         Some(Self { lag, each, hop, windows })
     }
 
+    /// Where there is anything to see: keys of windows that are loud enough, and as many beside them.
+    fn loud(&self) -> Vec<Range<usize>> {
+        let count = self.each.len();
+        let mut loud: Vec<Range<usize>> = Vec::new();
+        for (index, _) in self.windows.iter().enumerate().filter(|(_, window)| window.0 >= LEAST_RAD) {
+            let start = (index * self.hop).saturating_sub(2 * self.hop);
+            let end = (index * self.hop + 4 * self.hop).min(count);
+            match loud.last_mut() {
+                Some(last) if start <= last.end => last.end = end,
+                _ => loud.push(start..end),
+            }
+        }
+        loud
+    }
+
     /// The level that a share of the windows stays below.
     fn level_of_share(&self, share: f64) -> f64 {
         self.level_among(share, |_| true)
@@ -199,7 +253,7 @@ fn fourth_difference(poses: &[Rotor], key: usize, lag: usize) -> f64 {
 }
 
 /// The same at twice the distance, for the keys of a window that have such.
-fn twice(row: &Row, lag: usize, keys: std::ops::Range<usize>) -> Vec<f64> {
+fn twice(row: &Row, lag: usize, keys: Range<usize>) -> Vec<f64> {
     let inside = keys.start.max(4 * lag)..keys.end.min(row.len() - 4 * lag);
     // What is not evenly spaced tells nothing.
     inside.map(|key| row.noise(key, 2 * lag)).filter(|noise| *noise > 0.0).collect()
@@ -345,21 +399,13 @@ fn fitted(levels: &Levels, row: &Row, (start, end): (usize, usize), least: f64, 
 }
 
 /// The first key that shows noise, with another soon after.
-fn first_of_run(
-    levels: &Levels,
-    keys: std::ops::Range<usize>,
-    shows: &impl Fn(&usize) -> bool,
-) -> Option<usize> {
+fn first_of_run(levels: &Levels, keys: Range<usize>, shows: &impl Fn(&usize) -> bool) -> Option<usize> {
     let shown: Vec<usize> = keys.filter(shows).collect();
     let near = 2 * levels.lag + 1;
     shown.windows(3).find(|three| three[2] - three[0] <= 2 * near).map(|three| three[0])
 }
 
-fn last_of_run(
-    levels: &Levels,
-    keys: std::ops::Range<usize>,
-    shows: &impl Fn(&usize) -> bool,
-) -> Option<usize> {
+fn last_of_run(levels: &Levels, keys: Range<usize>, shows: &impl Fn(&usize) -> bool) -> Option<usize> {
     let shown: Vec<usize> = keys.filter(shows).collect();
     let near = 2 * levels.lag + 1;
     shown.windows(3).rev().find(|three| three[2] - three[0] <= 2 * near).map(|three| three[2])

@@ -1,0 +1,119 @@
+//! Runs that would be told from a fast move neither by their size nor by what they leave: the joint's other keys and the joint
+//! on the other side tell whether it moves like that.
+//!
+//! In a loop of a second or two at 24 to 30 poses a second a kick of a leg is no smoother than a fault. But a kick is done by
+//! the other leg too, and again in the next cycle: there some keys turn against each other by the same angles, whichever way
+//! the two joints' own axes lie. A fault is done by no other.
+
+use std::cell::OnceCell;
+use std::f64::consts::PI;
+
+use crate::rotor::Rotor;
+
+use super::super::mirror::mirror_of;
+use super::super::roughness::{Roughness, angle_of_dot};
+use super::super::scan::Scan;
+use super::{LEAST_KEYS, LEAST_SPREAD_RAD, Run, comes_back, may_be_spike};
+
+/// With more poses a second a spike is told by itself.
+const FINE_SECS: f64 = 0.02;
+
+/// Roughness is at least this, and so many spreads above the usual.
+const LEAST_RAD: f64 = 12.0 / 180.0 * PI;
+const LEAST_SCORE: f64 = 3.0;
+
+/// How many times rougher the motion is with the run than without.
+const LEAST_GAIN: f64 = 2.2;
+/// The same of a joint that has no other side.
+const LEAST_GAIN_ALONE: f64 = 2.75;
+
+/// How many times rougher it is than the joint anywhere else; without another side.
+const TIMES_ELSEWHERE: f64 = 1.5;
+const TIMES_ELSEWHERE_ALONE: f64 = 2.25;
+
+/// The other side is calm when it is so many times less rough at its worst. Else it is asked whether it does the same.
+const TIMES_MIRROR: f64 = 1.2;
+
+/// Two stretches are alike when the angles between their poses differ by less than this share of the roughness, in the mean.
+const ALIKE_SHARE: f64 = 0.35;
+
+/// Keys beside a run that belong to its shape.
+const BESIDE: usize = 2;
+
+/// How sure it is.
+const CONFIDENCE: f64 = 0.55;
+const CONFIDENCE_CLEAR: f64 = 0.65;
+/// From this gain on it is clear.
+const CLEAR_GAIN: f64 = 3.3;
+
+/// A joint's roughness, and that of the joint on its other side, worked out when first asked for.
+pub(super) struct Alike<'a> {
+    scan: &'a Scan<'a>,
+    rough: &'a Roughness,
+    is_coarse: bool,
+    mirror: OnceCell<Option<Roughness>>,
+}
+
+impl<'a> Alike<'a> {
+    pub(super) fn new(scan: &'a Scan<'a>, rough: &'a Roughness) -> Self {
+        let is_coarse = scan.track.times.median_step().is_some_and(|step_secs| step_secs > FINE_SECS);
+        Self { scan, rough, is_coarse, mirror: OnceCell::new() }
+    }
+
+    /// How sure it is that `run` is a spike because the joint moves like that nowhere else, and the other side neither.
+    pub(super) fn stands_alone(&self, run: Run) -> Option<f64> {
+        let (scan, rough) = (self.scan, self.rough);
+        if !self.is_coarse
+            || run.peak < LEAST_RAD
+            || !may_be_spike(scan, rough, run)
+            || !comes_back(rough, run)
+        {
+            return None;
+        }
+        let usual = rough.usual_without(run.first, run.last);
+        let score = (run.peak - usual.median) / usual.spread.max(LEAST_SPREAD_RAD);
+        let gain = run.peak / run.rest.max(LEAST_SPREAD_RAD);
+        if score < LEAST_SCORE || gain < LEAST_GAIN {
+            return None;
+        }
+        let beside = |key: usize| key + 3 >= run.first && key <= run.last + 3;
+        let elsewhere = (1..rough.len() - 1)
+            .filter(|key| !beside(*key))
+            .map(|key| rough.residual[key])
+            .fold(0.0, f64::max);
+        let mirror = self.mirror.get_or_init(|| {
+            let other = Scan::new(scan.clip, mirror_of(&scan.clip.skeleton, scan.joint)?)?;
+            Roughness::new(&other, LEAST_KEYS)
+        });
+        let is_alone = match mirror {
+            None => gain >= LEAST_GAIN_ALONE && run.peak >= TIMES_ELSEWHERE_ALONE * elsewhere,
+            Some(mirror) => {
+                let worst = mirror.residual.iter().copied().fold(0.0, f64::max);
+                run.peak >= TIMES_ELSEWHERE * elsewhere
+                    && (run.peak >= TIMES_MIRROR * worst || !is_done(rough, run, mirror))
+            }
+        };
+        is_alone.then_some(if gain >= CLEAR_GAIN { CONFIDENCE_CLEAR } else { CONFIDENCE })
+    }
+}
+
+/// Whether another joint does what this one does around a run, at any time.
+fn is_done(rough: &Roughness, run: Run, other: &Roughness) -> bool {
+    let keys = run.first - BESIDE..(run.last + BESIDE + 1).min(rough.len());
+    let wanted = shape(&rough.poses[keys.clone()]);
+    let Some(last) = other.len().checked_sub(keys.len()) else { return false };
+    (0..=last).any(|start| {
+        let own = shape(&other.poses[start..start + keys.len()]);
+        let apart: f64 = own.iter().zip(&wanted).map(|(a, b)| (a - b).abs()).sum();
+        apart < ALIKE_SHARE * run.peak * wanted.len() as f64
+    })
+}
+
+/// The turns from each pose to each later one: they say how a stretch moves, but not about which axes.
+fn shape(poses: &[Rotor]) -> Vec<f64> {
+    let mut turns = Vec::with_capacity(poses.len() * poses.len() / 2);
+    for (i, a) in poses.iter().enumerate() {
+        turns.extend(poses[i + 1..].iter().map(|b| angle_of_dot(a.dot(*b))));
+    }
+    turns
+}
