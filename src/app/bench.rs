@@ -12,6 +12,7 @@ use crate::scene::{
 };
 use crate::snag::Snag;
 
+use super::carry_state::{CarryMeasured, CarryWork};
 use super::commands::Situation;
 use super::session::Session;
 use super::view_models::{
@@ -251,6 +252,10 @@ pub struct Bench {
     pub curves: Option<FromClips<(usize, CurveView), Arc<CurveSet>>>,
     /// The way of the chosen joint's tip.
     pub tip_path: Option<FromClips<usize, Arc<Path3>>>,
+    /// The retarget that is looked at, made ready.
+    pub carry: Option<CarryWork>,
+    /// The same, carried whole and measured.
+    pub carry_measured: Option<CarryMeasured>,
     models: Models,
 }
 
@@ -447,6 +452,7 @@ impl Bench {
             markers: work.map_or(0, |work| work.markers.len()),
             limits: work.and_then(|work| work.limits.as_ref()).map(|limits| limits.title.clone()),
             search: work.map(|work| work.search).unwrap_or_default(),
+            carries: session.carry.is_open,
             curve_view: Some(session.curve_view),
             heat_kind: Some(session.heat_kind),
         }

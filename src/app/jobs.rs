@@ -31,6 +31,10 @@ pub enum Slot {
     Export,
     /// Finding a source anew.
     Relocate,
+    /// Making a retarget ready.
+    Carry,
+    /// Carrying a clip over and measuring it.
+    CarryMeasure,
 }
 
 impl Slot {
@@ -46,12 +50,14 @@ impl Slot {
             Self::TipPath => "Following the tip",
             Self::Save => "Saving",
             Self::Export => "Exporting",
+            Self::Carry => "Mapping joints",
+            Self::CarryMeasure => "Measuring the retarget",
         }
     }
 
     /// Short work that the eye waits for must not stand behind long work.
     const fn is_quick(self) -> bool {
-        matches!(self, Self::Evaluate | Self::Curves | Self::TipPath | Self::Save)
+        matches!(self, Self::Evaluate | Self::Curves | Self::TipPath | Self::Save | Self::Carry)
     }
 }
 

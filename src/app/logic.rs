@@ -1,6 +1,7 @@
 //! What happens between frames: the answers of jobs are taken in, what panels asked for is done, new work is ordered.
 
 mod answers;
+mod carry;
 mod files;
 mod limits;
 mod markers;
@@ -22,6 +23,7 @@ use crate::scene::Edit;
 use limits::LimitsFrom;
 
 pub(crate) use answers::Answer;
+pub(crate) use carry::retarget_in;
 pub(crate) use orders::Asked;
 
 impl Window {
@@ -94,6 +96,7 @@ impl Window {
             }
             Command::Cancel(slot) => self.stop(slot),
             Command::Time(command) => self.run_time(command),
+            Command::Carry(command) => self.run_carry(command),
         }
     }
 
@@ -182,6 +185,7 @@ impl Window {
             A::Shortcuts => self.show_dialog(Dialog::Shortcuts),
             A::WhatsNew => self.show_dialog(Dialog::WhatsNew),
             A::About => self.show_dialog(Dialog::About),
+            A::Retarget => self.retarget(),
         }
     }
 

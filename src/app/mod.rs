@@ -12,6 +12,7 @@
 //! | `paint`, `runners`, `screen` | how a window comes onto the display, with a graphics driver or without |
 
 pub mod bench;
+pub mod carry_state;
 pub mod commands;
 mod file_picker;
 mod jobs;

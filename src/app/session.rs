@@ -6,6 +6,7 @@ use crate::clip::Clip;
 use crate::raster::Camera;
 use crate::scene::SnagMark;
 
+use super::carry_state::CarryHabits;
 use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeChoice, TimeWindow};
 
 /// The speeds that the menu steps through.
@@ -117,6 +118,8 @@ pub struct Session {
     pub order: SnagOrder,
     /// Whether the mend of the chosen snag is shown before it is accepted.
     pub looks: bool,
+    /// How the retarget sheet is looked at.
+    pub carry: CarryHabits,
 }
 
 impl Default for Session {
@@ -141,6 +144,7 @@ impl Default for Session {
             filter: SnagFilter::default(),
             order: SnagOrder::default(),
             looks: false,
+            carry: CarryHabits::default(),
         }
     }
 }

@@ -131,6 +131,13 @@ pub enum Edit {
         /// Where it is now.
         to: SourceRef,
     },
+    /// Another file, and work on each of its clips, after those that are there.
+    AddSource {
+        /// The file.
+        source: SourceRef,
+        /// The names of its clips.
+        clips: Vec<String>,
+    },
     /// Measure turns from another rest pose.
     ChooseRest {
         /// Of which source.
@@ -227,6 +234,10 @@ impl Edit {
             },
             Self::ChangeMarkers { change, .. } => change.label(),
             Self::Relocate { .. } => "Relocate source".to_owned(),
+            Self::AddSource { source, .. } => {
+                let name = source.path.file_name().unwrap_or_default().to_string_lossy().into_owned();
+                format!("Add file: {name}")
+            }
             Self::ChooseRest { rest: Some(rest), .. } => format!("Rest pose: {}", rest.title()),
             Self::ChooseRest { rest: None, .. } => "Rest pose by rule".to_owned(),
         }
@@ -303,6 +314,12 @@ impl Edit {
                 let own = work_at(&mut next, *work)?;
                 let count = own.markers.len();
                 own.markers = change.applied(&own.markers).ok_or(EditError::NoSuchMarker { count })?;
+            }
+            Self::AddSource { source, clips } => {
+                let index = next.sources.len();
+                next.sources.push(source.clone());
+                let works = clips.iter().enumerate();
+                next.works.extend(works.map(|(clip, name)| ClipWork::new(index, clip, name.as_str())));
             }
             Self::ChooseRest { source, rest } => {
                 let count = next.sources.len();

@@ -24,6 +24,7 @@
 //! | `path_export` | paths, spacings and meant turns in files, played as each format says |
 //! | `paths` | paths between keys, spacing, meant turns: 50-digit derivatives, scipy, and what holds for every track |
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
+//! | `gui_carry` | the retarget sheet, driven by accessible labels; what is asserted is the document |
 //! | `gui_display` | the real program in a real window under Xvfb, driven by mouse and keyboard |
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
@@ -60,6 +61,8 @@ mod ground_faults;
 
 mod golden;
 #[cfg(feature = "gui-tests")]
+mod gui_carry;
+#[cfg(feature = "gui-tests")]
 mod gui_display;
 #[cfg(feature = "gui-tests")]
 mod gui_paint;
@@ -88,3 +91,5 @@ mod rotor_properties;
 mod snags;
 mod strategies;
 mod support;
+#[cfg(feature = "gui-tests")]
+mod zz_shots;

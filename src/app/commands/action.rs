@@ -86,6 +86,7 @@ pub enum Action {
     Shortcuts,
     WhatsNew,
     About,
+    Retarget,
 }
 
 /// The menus, from left to right.

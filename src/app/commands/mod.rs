@@ -12,11 +12,13 @@ use super::jobs::Slot;
 use super::view_models::{SnagFilter, SnagOrder, TimeWindow};
 
 mod action;
+mod carry;
 mod situation;
 mod table;
 mod time;
 
 pub use action::{Action, Menu};
+pub use carry::{CarryCommand, CarrySheet};
 pub use situation::Situation;
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
 pub(crate) use time::LEARNED;
@@ -90,4 +92,6 @@ pub enum Command {
     Cancel(Slot),
     /// Choices of time and joints, the turn map, the snag list.
     Time(TimeCommand),
+    /// About carrying the clip to another skeleton.
+    Carry(CarryCommand),
 }

@@ -146,6 +146,16 @@ pub const TABLE: &[Entry] = &{
             DOCUMENT,
         )
         .group(),
+        entry(
+            E,
+            A::Retarget,
+            "Retarget…",
+            "Carry the clip to another skeleton: joint map, rest poses, contacts. Again: back to the bench",
+            Some(ctrl(Key::T)),
+            CLIP,
+        )
+        .switch(|now| now.carries)
+        .group(),
         entry(V, A::Fit, "Fit figure", "Bring the whole figure into view", Some(ctrl(Key::Num7)), CLIP),
         entry(
             V,

@@ -10,6 +10,7 @@ use super::super::file_picker::{Picked, Purpose};
 use super::super::panels::{Dialog, Form, Level, Message};
 use super::super::view_models::{CurveSet, CurveView, HeatMap, HeatWish};
 use super::super::window::Window;
+use super::carry::CarryAnswer;
 use super::files::{Exported, OpenedScene};
 use super::limits::Fitted;
 use crate::clip::Clip;
@@ -95,6 +96,8 @@ pub(crate) enum Answer {
         /// The file, or why not.
         result: Result<Arc<Source>, String>,
     },
+    /// About a retarget.
+    Carry(CarryAnswer),
 }
 
 impl Window {
@@ -153,6 +156,7 @@ impl Window {
             }
             Answer::Exported(result) => self.take_exported(result),
             Answer::Relocated { serial, index, result } => self.take_relocated(serial, index, result),
+            Answer::Carry(answer) => self.take_carry(answer),
         }
     }
 
@@ -225,6 +229,8 @@ impl Window {
         self.bench.heat = None;
         self.bench.curves = None;
         self.bench.tip_path = None;
+        self.bench.carry = None;
+        self.bench.carry_measured = None;
         self.bench.preview = None;
         let clip = project.source_clip(work).cloned();
         self.bench.project = Some(project);

@@ -3,6 +3,7 @@
 use std::sync::Arc;
 
 use super::super::bench::{Evaluated, FromClips, Searched};
+use super::super::carry_state::CarryKey;
 use super::super::jobs::Slot;
 use super::super::view_models::{CurveView, HeatKind, HeatWish, changes, curve_set, heat_map, tip_path};
 use super::super::window::Window;
@@ -27,6 +28,10 @@ pub(crate) struct Asked {
     pub curves: Option<FromClips<(usize, CurveView), ()>>,
     /// Clips and joint.
     pub tip_path: Option<FromClips<usize, ()>>,
+    /// What a retarget hangs on.
+    pub carry: Option<CarryKey>,
+    /// The same, carried whole.
+    pub carry_measured: Option<CarryKey>,
 }
 
 impl Window {
@@ -35,6 +40,7 @@ impl Window {
         let Some(source) = self.bench.source().cloned() else { return };
         self.order_survey(&source);
         self.order_evaluation(&source);
+        self.order_carry();
         let (Some(before), Some(result)) = (self.bench.before().cloned(), self.bench.result().cloned())
         else {
             return;

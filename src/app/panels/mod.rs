@@ -1,5 +1,6 @@
 //! The parts of the window. Each reads a [`Scope`] and asks for changes with commands.
 
+mod carry;
 mod change_plot;
 mod curves;
 mod dialogs;
@@ -60,6 +61,10 @@ fn held(ui: &mut egui::Ui, content: impl FnOnce(&mut egui::Ui)) {
 
 /// The whole bench: left is space, right is time.
 pub(crate) fn bench_ui(ui: &mut egui::Ui, scope: &mut Scope<'_>) {
+    if scope.bench.session.carry.is_open {
+        carry::carry_ui(ui, scope);
+        return;
+    }
     let size = ui.available_size();
     let bare = egui::Frame::NONE;
     egui::Panel::left("space")

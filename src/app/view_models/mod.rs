@@ -1,5 +1,7 @@
 //! What the panels show, as plain data: no egui types, so that deriving it can be tested without a window.
 
+mod carry;
+mod carry_figures;
 mod change_log;
 mod changes;
 mod curves;
@@ -17,6 +19,11 @@ mod time_choice;
 mod time_window;
 mod words;
 
+pub use carry::{
+    BarMark, CarryBar, CarryFacts, CarryLine, CarryRow, CarryState, Lane, carry_bars, carry_facts,
+    carry_lines, with_bar, with_bar_at, with_hold, with_link, without_bar, without_link,
+};
+pub use carry_figures::{CarryEye, CarryPicture, CarryPose, carry_overlay, carry_view};
 pub use change_log::{LogBlock, log_blocks};
 pub use changes::{Changes, changes};
 pub use curves::{CurveLine, CurveSet, CurveView, curve_set};

@@ -1,6 +1,7 @@
 //! Questions and sheets that lie over the window, one file each.
 
 mod about;
+mod carry;
 mod changes;
 mod clips;
 mod columns;
@@ -18,7 +19,7 @@ use std::path::PathBuf;
 
 use egui::{Modal, vec2};
 
-use super::super::commands::Command;
+use super::super::commands::{CarrySheet, Command};
 use super::super::file_picker::Purpose;
 use super::Scope;
 
@@ -68,6 +69,8 @@ pub(crate) enum Dialog {
     WhatsNew,
     /// Version, licences, cautions.
     About,
+    /// A file of a retarget.
+    Carry(CarrySheet),
 }
 
 /// Draws the dialog, if there is one.
@@ -102,6 +105,7 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
             Dialog::Shortcuts => shortcuts::shortcuts_sheet(ui, form, scope),
             Dialog::WhatsNew => changes::changes_sheet(ui, scope),
             Dialog::About => about::about_sheet(ui, scope),
+            Dialog::Carry(sheet) => carry::carry_sheet(ui, *sheet, form, scope),
         }
     });
     if response.should_close() {
