@@ -13,6 +13,7 @@ use crate::scene::{
 use crate::snag::Snag;
 
 use super::blend_state::BlendWork;
+use super::carry_state::{CarryMeasured, CarryWork};
 use super::commands::Situation;
 use super::curve_hand::CurveHand;
 use super::session::Session;
@@ -261,6 +262,10 @@ pub struct Bench {
     pub tip_path: Option<FromClips<usize, Arc<Path3>>>,
     /// What is known of the blend that is looked at.
     pub blend: Option<BlendWork>,
+    /// The retarget that is looked at, made ready.
+    pub carry: Option<CarryWork>,
+    /// The same, carried whole and measured.
+    pub carry_measured: Option<CarryMeasured>,
     models: Models,
 }
 
@@ -482,6 +487,7 @@ impl Bench {
             markers: work.map_or(0, |work| work.markers.len()),
             limits: work.and_then(|work| work.limits.as_ref()).map(|limits| limits.title.clone()),
             search: work.map(|work| work.search).unwrap_or_default(),
+            carries: session.carry.is_open,
             curve_view: Some(session.curve_view),
             chosen_keys: session.curves.keys.len(),
             has_segment: session.curves.segment.is_some(),

@@ -8,6 +8,8 @@ use std::sync::mpsc::{Receiver, Sender, channel};
 use std::task::{Context, Poll, Wake, Waker};
 use std::time::{Duration, Instant};
 
+use super::commands::CarrySheet;
+
 /// What a file is picked for.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum Purpose {
@@ -23,6 +25,8 @@ pub enum Purpose {
     Limits,
     /// To take the second clip of a blend from.
     Second,
+    /// A file of a retarget.
+    Carry(CarrySheet),
 }
 
 /// What came of it.
@@ -118,6 +122,24 @@ fn dialog(purpose: Purpose, suggestion: &Path) -> Vec<PathBuf> {
             let dialog = dialog.set_title("Open the second clip").add_filter("Clips", &clips);
             wait_for(dialog.pick_file()).into_iter().map(paths).collect()
         }
+        Purpose::Carry(sheet) => match sheet {
+            CarrySheet::Onto => {
+                let dialog = dialog.set_title("Retarget onto").add_filter("Files with joints", &clips);
+                wait_for(dialog.pick_file()).into_iter().map(paths).collect()
+            }
+            CarrySheet::LoadMap => {
+                let dialog = dialog.set_title("Load a joint map").add_filter("Joint maps", &["csv"]);
+                wait_for(dialog.pick_file()).into_iter().map(paths).collect()
+            }
+            CarrySheet::SaveMap => {
+                let dialog = dialog.set_title("Save the joint map").add_filter("Joint maps", &["csv"]);
+                wait_for(dialog.save_file()).into_iter().map(paths).collect()
+            }
+            CarrySheet::Export => {
+                let dialog = dialog.set_title("Export onto the target's file").add_filter("Clips", &clips);
+                wait_for(dialog.save_file()).into_iter().map(paths).collect()
+            }
+        },
         Purpose::Save => {
             let dialog = dialog.set_title("Save the scene").add_filter("Scene", &["ron"]);
             wait_for(dialog.save_file()).into_iter().map(paths).collect()

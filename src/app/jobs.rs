@@ -33,6 +33,10 @@ pub enum Slot {
     Relocate,
     /// Comparing the two clips of a blend.
     Blend,
+    /// Making a retarget ready.
+    Carry,
+    /// Carrying a clip over and measuring it.
+    CarryMeasure,
 }
 
 impl Slot {
@@ -49,12 +53,17 @@ impl Slot {
             Self::Save => "Saving",
             Self::Export => "Exporting",
             Self::Blend => "Comparing clips",
+            Self::Carry => "Mapping joints",
+            Self::CarryMeasure => "Measuring the retarget",
         }
     }
 
     /// Short work that the eye waits for must not stand behind long work.
     const fn is_quick(self) -> bool {
-        matches!(self, Self::Evaluate | Self::Curves | Self::TipPath | Self::Save | Self::Blend)
+        matches!(
+            self,
+            Self::Evaluate | Self::Curves | Self::TipPath | Self::Save | Self::Blend | Self::Carry
+        )
     }
 }
 

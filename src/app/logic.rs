@@ -3,6 +3,7 @@
 mod answers;
 mod blend;
 mod curves;
+mod carry;
 mod files;
 mod limits;
 mod markers;
@@ -24,6 +25,7 @@ use crate::scene::{Edit, LoopPass};
 use limits::LimitsFrom;
 
 pub(crate) use answers::Answer;
+pub(crate) use carry::retarget_in;
 pub(crate) use orders::Asked;
 
 impl Window {
@@ -102,6 +104,7 @@ impl Window {
             Command::Cancel(slot) => self.stop(slot),
             Command::Time(command) => self.run_time(command),
             Command::Blend(command) => self.run_blend(command),
+            Command::Carry(command) => self.run_carry(command),
         }
     }
 
@@ -203,6 +206,7 @@ impl Window {
             }
             A::BlendLane => self.bench.session.blend.shows_lane ^= true,
             A::BlendClips => self.bench.session.blend.shows_clips ^= true,
+            A::Retarget => self.retarget(),
         }
     }
 

@@ -14,6 +14,7 @@
 
 pub mod bench;
 pub mod blend_state;
+pub mod carry_state;
 pub mod commands;
 mod curve_hand;
 mod file_picker;

@@ -7,9 +7,10 @@ use egui::{ColorImage, Context, Rect, TextureHandle, TextureOptions, pos2};
 
 use crate::clip::Clip;
 use crate::raster::{Camera, Canvas, SceneView, render_into};
+use crate::skeleton::LocalPose;
 
 use super::panels::{CurvePress, DistanceKey};
-use super::view_models::{FaintFigure, HeatMap, MapRow, Memo, Stage, TimeWindow};
+use super::view_models::{CarryEye, FaintFigure, HeatMap, MapRow, Memo, Stage, TimeWindow};
 
 /// A texture and the key of what is on it.
 pub(crate) struct Picture<K> {
@@ -121,6 +122,29 @@ impl PartialEq for RowsKey {
     }
 }
 
+/// What a picture of the retarget sheet hangs on.
+#[derive(Clone, Debug, PartialEq)]
+pub(crate) struct CarryPictureKey {
+    /// Pixels.
+    pub size_px: [usize; 2],
+    /// From where.
+    pub eye: CarryEye,
+    /// Pixels per point.
+    pub scale: f32,
+    /// Whether the window is dark.
+    pub is_dark: bool,
+    /// Whether both figures are in it.
+    pub is_overlaid: bool,
+    /// The poses of source and target.
+    pub poses: [LocalPose; 2],
+    /// The chosen target joint.
+    pub row: Option<usize>,
+    /// The joints under the pointer.
+    pub hovered: [Option<usize>; 2],
+    /// The address of figures and map, which stay in memory while the picture is of them.
+    pub facts: usize,
+}
+
 /// All pictures of the window, and what is kept for making them.
 #[derive(Debug, Default)]
 pub(crate) struct Pictures {
@@ -128,6 +152,12 @@ pub(crate) struct Pictures {
     pub skeleton: Picture<SkeletonKey>,
     /// What was drawn there last: for choosing a limb with the pointer.
     pub figure: Option<SceneView>,
+    /// The two figures of the retarget sheet.
+    pub carry: [Picture<CarryPictureKey>; 2],
+    /// What was drawn there last.
+    pub carry_views: [Option<SceneView>; 2],
+    /// The joint of source and target under the pointer there.
+    pub carry_hovered: [Option<usize>; 2],
     /// The turn map.
     pub map: Picture<MapKey>,
     /// Its rows.

@@ -9,6 +9,7 @@ use crate::raster::Camera;
 use crate::scene::SnagMark;
 
 use super::blend_state::BlendHabits;
+use super::carry_state::CarryHabits;
 use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeChoice, TimeWindow};
 
 pub use curves::CurveHabits;
@@ -131,6 +132,8 @@ pub struct Session {
     pub looks: bool,
     /// How the blend lane is set.
     pub blend: BlendHabits,
+    /// How the retarget sheet is looked at.
+    pub carry: CarryHabits,
 }
 
 impl Default for Session {
@@ -159,6 +162,7 @@ impl Default for Session {
             order: SnagOrder::default(),
             looks: false,
             blend: BlendHabits::default(),
+            carry: CarryHabits::default(),
         }
     }
 }

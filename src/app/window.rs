@@ -259,6 +259,7 @@ impl Screen for Window {
         scope.pictures.scroll_to_joint = None;
         scope.pictures.scroll_to_snag = false;
         scope.pictures.hovered = None;
+        scope.pictures.carry_hovered = [None; 2];
         if let Some(dialog) = &self.dialog {
             panels::dialogs_ui(ui.ctx(), dialog, &mut self.form, &mut scope);
         }

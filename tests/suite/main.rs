@@ -26,6 +26,7 @@
 //! | `paths` | paths between keys, spacing, meant turns: 50-digit derivatives, scipy, and what holds for every track |
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
 //! | `gui_curves` | editing on the rotation curves, by pointer and keyboard; what is asserted is the document |
+//! | `gui_carry` | the retarget sheet, driven by accessible labels; what is asserted is the document |
 //! | `gui_display` | the real program in a real window under Xvfb, driven by mouse and keyboard |
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
@@ -65,6 +66,8 @@ mod golden;
 #[cfg(feature = "gui-tests")]
 mod gui_curves;
 #[cfg(feature = "gui-tests")]
+mod gui_carry;
+#[cfg(feature = "gui-tests")]
 mod gui_display;
 #[cfg(feature = "gui-tests")]
 mod gui_paint;
@@ -96,3 +99,5 @@ mod rotor_properties;
 mod snags;
 mod strategies;
 mod support;
+#[cfg(feature = "gui-tests")]
+mod zz_shots;

@@ -93,6 +93,7 @@ pub enum Action {
     MakeLoop,
     BlendLane,
     BlendClips,
+    Retarget,
 }
 
 /// The menus, from left to right.

@@ -14,6 +14,7 @@ use super::view_models::{SnagFilter, SnagOrder, TimeWindow};
 mod action;
 mod blend;
 mod curves;
+mod carry;
 mod situation;
 mod table;
 mod time;
@@ -21,6 +22,7 @@ mod time;
 pub use action::{Action, Menu};
 pub use blend::BlendCommand;
 pub use curves::{CurveAction, CurveCommand};
+pub use carry::{CarryCommand, CarrySheet};
 pub use situation::Situation;
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
 pub(crate) use time::LEARNED;
@@ -100,4 +102,6 @@ pub enum Command {
     Time(TimeCommand),
     /// About blends and loops.
     Blend(BlendCommand),
+    /// About carrying the clip to another skeleton.
+    Carry(CarryCommand),
 }

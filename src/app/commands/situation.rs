@@ -65,6 +65,8 @@ pub struct Situation {
     pub limits: Option<String>,
     /// What else is looked for.
     pub search: SearchChoice,
+    /// The retarget sheet is open.
+    pub carries: bool,
     /// What the curves show.
     pub curve_view: Option<CurveView>,
     /// How many keys are chosen.

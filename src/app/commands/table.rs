@@ -174,6 +174,15 @@ pub const TABLE: &[Entry] = &{
             Some(ctrl(Key::R)),
             CLIP,
         ),
+        entry(
+            E,
+            A::Retarget,
+            "Retarget…",
+            "Carry the clip to another skeleton: joint map, rest poses, contacts. Again: back to the bench",
+            Some(ctrl(Key::T)),
+            CLIP,
+        )
+        .switch(|now| now.carries),
         entry(V, A::Fit, "Fit figure", "Bring the whole figure into view", Some(ctrl(Key::Num7)), CLIP),
         entry(
             V,

@@ -11,6 +11,7 @@ use super::super::panels::{Dialog, Form, Level, Message};
 use super::super::view_models::{CurveKey, CurveSet, HeatMap, HeatWish, TimeWindow};
 use super::super::window::Window;
 use super::blend::BlendAnswer;
+use super::carry::CarryAnswer;
 use super::files::{Exported, OpenedScene};
 use super::limits::Fitted;
 use crate::clip::Clip;
@@ -98,6 +99,8 @@ pub(crate) enum Answer {
     },
     /// About a blend or a loop.
     Blend(BlendAnswer),
+    /// About a retarget.
+    Carry(CarryAnswer),
 }
 
 impl Window {
@@ -165,6 +168,7 @@ impl Window {
             Answer::Exported(result) => self.take_exported(result),
             Answer::Relocated { serial, index, result } => self.take_relocated(serial, index, result),
             Answer::Blend(answer) => self.take_blend(answer),
+            Answer::Carry(answer) => self.take_carry(answer),
         }
     }
 
@@ -248,6 +252,8 @@ impl Window {
         self.bench.curve_hand.let_go();
         self.bench.tip_path = None;
         self.bench.blend = None;
+        self.bench.carry = None;
+        self.bench.carry_measured = None;
         self.bench.preview = None;
         self.bench.trial = None;
         let clip = project.source_clip(work).cloned();

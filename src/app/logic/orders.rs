@@ -4,6 +4,7 @@ use std::sync::Arc;
 
 use super::super::bench::{Evaluated, FromClips, Searched};
 use super::super::blend_state::BlendKey;
+use super::super::carry_state::CarryKey;
 use super::super::jobs::Slot;
 use super::super::view_models::{CurveKey, HeatKind, HeatWish, changes, curve_set, heat_map, tip_path};
 use super::super::window::Window;
@@ -30,6 +31,10 @@ pub(crate) struct Asked {
     pub blend: Option<BlendKey>,
     /// Clips and joint.
     pub tip_path: Option<FromClips<usize, ()>>,
+    /// What a retarget hangs on.
+    pub carry: Option<CarryKey>,
+    /// The same, carried whole.
+    pub carry_measured: Option<CarryKey>,
 }
 
 impl Window {
@@ -39,6 +44,7 @@ impl Window {
         self.order_survey(&source);
         self.order_evaluation(&source);
         self.order_blend();
+        self.order_carry();
         let (Some(before), Some(result)) = (self.bench.before().cloned(), self.bench.result().cloned())
         else {
             return;

@@ -3,6 +3,7 @@
 mod blend_form;
 mod blend_lane;
 mod blend_picture;
+mod carry;
 mod change_plot;
 mod curves;
 mod dialogs;
@@ -75,6 +76,10 @@ fn held(ui: &mut egui::Ui, content: impl FnOnce(&mut egui::Ui)) {
 
 /// The whole bench: left is space, right is time.
 pub(crate) fn bench_ui(ui: &mut egui::Ui, scope: &mut Scope<'_>) {
+    if scope.bench.session.carry.is_open {
+        carry::carry_ui(ui, scope);
+        return;
+    }
     let size = ui.available_size();
     let bare = egui::Frame::NONE;
     egui::Panel::left("space")

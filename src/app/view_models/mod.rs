@@ -1,6 +1,8 @@
 //! What the panels show, as plain data: no egui types, so that deriving it can be tested without a window.
 
 mod blend;
+mod carry;
+mod carry_figures;
 mod change_log;
 mod changes;
 mod curve_measure;
@@ -26,6 +28,11 @@ pub use blend::{
     BlendFacts, BlendKind, LaneBars, blend_facts, held_place, knots_of, lane_bars, new_blend, weight_at,
     with_knot, with_knot_at, without_knot,
 };
+pub use carry::{
+    BarMark, CarryBar, CarryFacts, CarryLine, CarryRow, CarryState, Lane, carry_bars, carry_facts,
+    carry_lines, with_bar, with_bar_at, with_hold, with_link, without_bar, without_link,
+};
+pub use carry_figures::{CarryEye, CarryPicture, CarryPose, carry_overlay, carry_view};
 pub use change_log::{LogBlock, log_blocks};
 pub use changes::{Changes, changes};
 pub use curve_measure::Measure;

@@ -94,3 +94,51 @@ fn hand_from(own: &mirror::HandHold) -> Result<HandHold, String> {
         },
     })
 }
+
+#[cfg(test)]
+mod tests {
+    use super::super::steps::{step_from, step_to};
+    use super::*;
+    use crate::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
+    use crate::rotor::Rotor;
+    use crate::scene::PassStep;
+    use glam::DVec3;
+
+    #[test]
+    fn all_that_a_retarget_holds_comes_back() {
+        let cone = Range { swing: SwingLimit::Cone { half_rad: 0.5 }, twist: Interval::FREE };
+        let limit = JointLimit::new(Rotor::IDENTITY, DVec3::Y, DVec3::X, cone);
+        let limits = Limits { title: "stiff".to_owned(), joints: [(3, limit)].into() };
+        let contact = FootContact { side: Side::Right, part: FootPart::Ball, span_secs: [0.25, 1.5] };
+        let hold = |at| HandHold { side: Side::Left, span_secs: [0.5, 0.75], at };
+        let places = [HoldAt::Still, HoldAt::Place(DVec3::new(0.1, -2.0, 3.0)), HoldAt::OtherHand];
+        let pass = RetargetPass {
+            onto: 2,
+            rows: vec![(None, Some("head".to_owned())), (Some("Hips".to_owned()), None)],
+            rests: [
+                RestPick { frame_secs: Some(0.5), is_straightened: false },
+                RestPick { frame_secs: None, is_straightened: true },
+            ],
+            roots: [None, Some("hips_b".to_owned())],
+            plant_feet: true,
+            feet: Some(vec![contact]),
+            hands: places.into_iter().map(hold).collect(),
+            limits: Some(KeptLimits::Given(Arc::new(limits))),
+        };
+        let adult = RetargetPass { limits: Some(KeptLimits::Adult), feet: Some(vec![]), ..pass.clone() };
+        let plain = RetargetPass::new(1);
+        for (pass, version) in [(pass, 3), (adult, 3), (plain, 2)] {
+            let saved = step_to(&PassStep::from(pass.clone()), &|joint| format!("joint {joint}"));
+            assert_eq!(saved.version(), version);
+            let text = ::ron::to_string(&saved).unwrap();
+            let back: mirror::Step = ::ron::from_str(&text).unwrap();
+            let PassStep::Retarget(mut back) = step_from(back).unwrap() else { panic!("{text}") };
+            // Angles of limits go through degrees.
+            if let (Some(KeptLimits::Given(own)), Some(KeptLimits::Given(its))) = (&pass.limits, &back.limits) {
+                assert_eq!((own.title.as_str(), own.joints.len()), (its.title.as_str(), its.joints.len()));
+                back.limits.clone_from(&pass.limits);
+            }
+            assert_eq!(back, pass, "{text}");
+        }
+    }
+}

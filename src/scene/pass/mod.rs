@@ -25,7 +25,7 @@ pub use others::{ClipRef, Need, NoOthers, Others};
 pub use push::PushPass;
 pub use reduce::ReducePass;
 pub use resample::ResamplePass;
-pub use retarget::RetargetPass;
+pub use retarget::{RetargetPass, RetargetSetting};
 pub use rounds::{Closing, LoopPass};
 pub use scope::Scope;
 pub use smooth::SmoothPass;

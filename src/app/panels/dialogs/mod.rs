@@ -2,6 +2,7 @@
 
 mod about;
 mod blend;
+mod carry;
 mod changes;
 mod clips;
 mod columns;
@@ -19,7 +20,7 @@ use std::path::PathBuf;
 
 use egui::{Modal, vec2};
 
-use super::super::commands::Command;
+use super::super::commands::{CarrySheet, Command};
 use super::super::file_picker::Purpose;
 use super::Scope;
 
@@ -73,6 +74,8 @@ pub(crate) enum Dialog {
     Blend,
     /// A file with it.
     SecondFile,
+    /// A file of a retarget.
+    Carry(CarrySheet),
 }
 
 /// Draws the dialog, if there is one.
@@ -111,6 +114,7 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
             Dialog::SecondFile => {
                 path::path_sheet(ui, "Open the second clip", "Open", Purpose::Second, form, scope);
             }
+            Dialog::Carry(sheet) => carry::carry_sheet(ui, *sheet, form, scope),
         }
     });
     if response.should_close() {

@@ -1,0 +1,228 @@
+//! The joint map: a row for each target joint, with what drives it, how sure that is, and why.
+
+use egui::{Align2, FontId, Key, Rect, Role, ScrollArea, Sense, Ui, WidgetInfo, pos2, vec2};
+
+use super::super::super::commands::{CarryCommand, Command};
+use super::super::super::theme::{INSET, Look, ROW_HEIGHT};
+use super::super::super::view_models::{CarryRow, CarryState, with_link, without_link};
+use super::super::super::widgets::{focus_ring, hint, strip};
+use super::super::Scope;
+use super::{Sheet, change};
+
+/// Height of the editor below the rows.
+const EDITOR: f32 = 64.0;
+
+pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
+    let Some(facts) = sheet.facts else {
+        strip(ui, "Joint map", |_| {});
+        hint(ui, "The joint map is being made");
+        return;
+    };
+    let questions = facts.rows.iter().filter(|row| row.is_question).count();
+    let only = sheet.habits.questions_only;
+    strip(ui, "Joint map", |ui| {
+        let words = format!("Questions ({questions})");
+        let response =
+            ui.selectable_label(only, &words).on_hover_text("Only rows that a person should look at");
+        response.widget_info(|| WidgetInfo::selected(Role::Button, true, only, &words));
+        if response.clicked() {
+            scope.out.push(Command::Carry(CarryCommand::QuestionsOnly(!only)));
+        }
+    });
+    ui.painter().vline(ui.max_rect().left(), ui.max_rect().y_range(), (1.0, scope.look.line));
+    let rows: Vec<&CarryRow> = facts.rows.iter().filter(|row| !only || row.is_question).collect();
+    let area = ui.available_rect_before_wrap();
+    let doubts = &facts.setting.map.doubts;
+    let head = Rect::from_min_size(area.min, vec2(area.width(), 20.0));
+    let columns = Columns::of(area);
+    for (x, words) in [
+        (columns.target, "Target joint"),
+        (columns.source, "driven by"),
+        (columns.sure, "sure"),
+        (columns.why, "why"),
+    ] {
+        let font = FontId::proportional(12.0);
+        ui.painter().text(pos2(x, head.center().y), Align2::LEFT_CENTER, words, font, scope.look.faint);
+    }
+    ui.painter().hline(head.x_range(), head.bottom(), (1.0, scope.look.grid));
+    let body =
+        Rect::from_min_max(pos2(area.left(), head.bottom()), pos2(area.right(), area.bottom() - EDITOR));
+    ui.scope_builder(egui::UiBuilder::new().max_rect(body), |ui| {
+        if rows.is_empty() {
+            hint(ui, "No row is a question");
+            return;
+        }
+        ui.spacing_mut().item_spacing.y = 0.0;
+        let scroll = ScrollArea::vertical().id_salt("carry rows").auto_shrink(false);
+        let scroll = match chosen_place(&rows, sheet).filter(|_| sheet.habits.scroll_to_row) {
+            Some(place) => {
+                let y = (place as f32 * ROW_HEIGHT - body.height() * 0.4).max(0.0);
+                scroll.vertical_scroll_offset(y)
+            }
+            None => scroll,
+        };
+        scroll.show_rows(ui, ROW_HEIGHT, rows.len(), |ui, shown| {
+            for place in shown {
+                row_ui(ui, rows[place], &rows, place, &columns, sheet, scope);
+            }
+        });
+    });
+    let editor = Rect::from_min_max(pos2(area.left(), body.bottom()), area.max);
+    ui.painter().hline(editor.x_range(), editor.top(), (1.0, scope.look.line));
+    ui.scope_builder(egui::UiBuilder::new().max_rect(editor.shrink2(vec2(INSET, 5.0))), |ui| {
+        let chosen = sheet.habits.row.and_then(|row| facts.rows.iter().find(|own| own.target == row));
+        match chosen {
+            Some(row) => editor_ui(ui, row, sheet, scope),
+            None => {
+                let words = match doubts.as_slice() {
+                    [] => "Choose a row, or click a joint of the target figure, to change what drives it"
+                        .to_owned(),
+                    [only] => only.clone(),
+                    [first, ..] => format!("{first} (and {} more in the report)", doubts.len() - 1),
+                };
+                ui.add(
+                    egui::Label::new(egui::RichText::new(words).size(12.5).color(scope.look.faint)).wrap(),
+                );
+            }
+        }
+    });
+}
+
+/// Where columns begin.
+struct Columns {
+    target: f32,
+    source: f32,
+    sure: f32,
+    why: f32,
+    end: f32,
+}
+
+impl Columns {
+    fn of(area: Rect) -> Self {
+        let names = ((area.width() - 150.0) * 0.36).clamp(80.0, 220.0);
+        let target = area.left() + 26.0;
+        let source = target + names;
+        let sure = source + names;
+        Self { target, source, sure, why: sure + 52.0, end: area.right() - INSET }
+    }
+}
+
+fn chosen_place(rows: &[&CarryRow], sheet: &Sheet<'_>) -> Option<usize> {
+    rows.iter().position(|row| Some(row.target) == sheet.habits.row)
+}
+
+fn row_ui(
+    ui: &mut Ui,
+    row: &CarryRow,
+    rows: &[&CarryRow],
+    place: usize,
+    columns: &Columns,
+    sheet: &Sheet<'_>,
+    scope: &mut Scope<'_>,
+) {
+    let look = scope.look;
+    let (bounds, response) = ui.allocate_exact_size(vec2(ui.available_width(), ROW_HEIGHT), Sense::click());
+    let is_chosen = sheet.habits.row == Some(row.target);
+    response.widget_info(|| WidgetInfo::selected(Role::Button, true, is_chosen, row.sentence()));
+    if is_chosen {
+        ui.painter().rect_filled(bounds, 0.0, look.chosen);
+        ui.painter().vline(bounds.left() + 1.5, bounds.y_range(), (3.0, look.selection));
+    } else if response.hovered() {
+        ui.painter().rect_filled(bounds, 0.0, look.hover);
+    }
+    paint_row(ui, row, bounds, columns, &look);
+    focus_ring(ui, &response);
+    if response.has_focus() {
+        ui.memory_mut(|memory| {
+            memory.set_focus_lock_filter(
+                response.id,
+                egui::EventFilter { vertical_arrows: true, ..egui::EventFilter::default() },
+            );
+        });
+        let step = ui.input(|input| {
+            i32::from(input.key_pressed(Key::ArrowDown)) - i32::from(input.key_pressed(Key::ArrowUp))
+        });
+        let next = place.saturating_add_signed(step as isize).min(rows.len() - 1);
+        if step != 0 {
+            scope.out.push(Command::Carry(CarryCommand::ChooseRow(Some(rows[next].target))));
+        }
+    }
+    if is_chosen && sheet.habits.scroll_to_row {
+        response.request_focus();
+    }
+    if response.on_hover_text(&row.reason).clicked() {
+        let chosen = (!is_chosen).then_some(row.target);
+        scope.out.push(Command::Carry(CarryCommand::ChooseRow(chosen)));
+    }
+}
+
+fn paint_row(ui: &Ui, row: &CarryRow, bounds: Rect, columns: &Columns, look: &Look) {
+    let y = bounds.center().y;
+    let words = |from: f32, to: f32, text: &str, ink: egui::Color32| {
+        let font = FontId::proportional(13.0);
+        let mut job = egui::text::LayoutJob::simple_singleline(text.to_owned(), font, ink);
+        job.wrap = egui::text::TextWrapping::truncate_at_width((to - from - 6.0).max(6.0));
+        let galley = ui.painter().layout_job(job);
+        ui.painter().galley(pos2(from, y - galley.size().y / 2.0), galley, ink);
+    };
+    // A question has a mark of its own besides the words; what a person said, a bar.
+    let mark = pos2(bounds.left() + 14.0, y);
+    if row.is_question {
+        let plate = Rect::from_center_size(mark, vec2(14.0, 14.0));
+        ui.painter().rect_filled(plate, 2.5, look.snag);
+        ui.painter().text(mark, Align2::CENTER_CENTER, "?", FontId::proportional(11.5), look.snag_ink);
+    } else if matches!(row.state, CarryState::ByHand | CarryState::KeptAtRest) {
+        ui.painter().rect_filled(Rect::from_center_size(mark, vec2(10.0, 3.0)), 1.0, look.text);
+    }
+    let is_driven = !matches!(row.state, CarryState::Free | CarryState::KeptAtRest);
+    let ink = if is_driven { look.text } else { look.faint };
+    words(columns.target, columns.source, &row.target_label, ink);
+    words(columns.source, columns.sure, &row.source_label, ink);
+    let sure = match row.confidence {
+        Some(own) if row.state == CarryState::Linked => format!("{:.0} %", own * 100.0),
+        _ => row.state.word().to_owned(),
+    };
+    words(columns.sure, columns.why, &sure, if row.is_question { look.error } else { ink });
+    words(columns.why, columns.end, &row.reason, look.faint);
+}
+
+/// What drives the chosen joint, to be changed.
+fn editor_ui(ui: &mut Ui, row: &CarryRow, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
+    let Some(facts) = sheet.facts else { return };
+    let source = &facts.setting.source.skeleton;
+    ui.horizontal(|ui| {
+        ui.spacing_mut().item_spacing.x = 6.0;
+        let name = egui::RichText::new(&row.target_label).strong();
+        ui.add(egui::Label::new(name).truncate());
+        ui.label("driven by");
+        let mut wanted = None;
+        let shown = if row.source.is_some() { row.source_label.clone() } else { "choose…".to_owned() };
+        let combo =
+            egui::ComboBox::from_id_salt("carry source").selected_text(shown).width(150.0).height(320.0);
+        let response = combo.show_ui(ui, |ui| {
+            for joint in source.listed() {
+                if ui.selectable_label(row.source == Some(joint), source.label(joint)).clicked() {
+                    wanted = Some(joint);
+                }
+            }
+        });
+        let label = format!("Source joint that drives {}", row.target_label);
+        response.response.widget_info(|| WidgetInfo::labeled(Role::ComboBox, true, &label));
+        if let Some(joint) = wanted {
+            change(scope, sheet, with_link(sheet.pass.1, &row.target_label, Some(source.label(joint))));
+        }
+    });
+    ui.horizontal(|ui| {
+        ui.spacing_mut().item_spacing.x = 6.0;
+        let is_said = sheet.pass.1.rows.iter().any(|(_, own)| own.as_deref() == Some(&row.target_label));
+        if ui.button("Keep at rest").on_hover_text("Nothing drives this joint").clicked() {
+            change(scope, sheet, with_link(sheet.pass.1, &row.target_label, None));
+        }
+        let as_found = ui.add_enabled(is_said, egui::Button::new("As found"));
+        if as_found.on_hover_text("Forget what was said of this joint").clicked() {
+            change(scope, sheet, without_link(sheet.pass.1, &row.target_label));
+        }
+        let why = egui::RichText::new(&row.reason).size(12.0).color(scope.look.faint);
+        ui.add(egui::Label::new(why).truncate());
+    });
+}

@@ -1,0 +1,88 @@
+//! Files of a retarget: the target, the joint map, and where the result goes.
+
+use std::path::PathBuf;
+
+use egui::{RichText, Ui};
+
+use super::super::super::bench::file_name;
+use super::super::super::commands::{CarryCommand, CarrySheet, Command};
+use super::super::super::file_picker::Purpose;
+use super::super::Scope;
+use super::form::Form;
+use super::path::{CLIPS, path_ui};
+use super::sheet::{buttons, error_ui, heading};
+
+pub(super) fn carry_sheet(ui: &mut Ui, sheet: CarrySheet, form: &mut Form, scope: &mut Scope<'_>) {
+    let (title, words, verb, endings): (&str, &str, &str, &[&str]) = match sheet {
+        CarrySheet::Onto => (
+            "Retarget onto",
+            "The file whose skeleton is to make this motion; it need not have a clip",
+            "Use this file",
+            &CLIPS,
+        ),
+        CarrySheet::LoadMap => {
+            ("Load a joint map", "A table with the columns source and target", "Load", &[".csv"])
+        }
+        CarrySheet::SaveMap => (
+            "Save the joint map",
+            "A table with the columns source, target, confidence and reason",
+            "Save",
+            &[".csv"],
+        ),
+        CarrySheet::Export => (
+            "Export onto the target's file",
+            "A copy of the target's file with this motion in it: mesh, skin and all else stay. Another ending makes a new file",
+            "Export",
+            &CLIPS,
+        ),
+    };
+    heading(ui, title);
+    ui.add(egui::Label::new(RichText::new(words).color(scope.look.faint)).wrap());
+    if sheet == CarrySheet::Onto {
+        open_files_ui(ui, scope);
+    }
+    let mut meant = path_ui(ui, form, endings, 180.0, scope.look.faint);
+    error_ui(ui, form, scope);
+    let typed = form.path.trim().to_owned();
+    let clicked = buttons(ui, verb, !typed.is_empty(), scope, |ui, scope| {
+        if ui.button("Browse…").on_hover_text("The desktop's own file dialog").clicked() {
+            scope.out.push(Command::Browse(Purpose::Carry(sheet)));
+        }
+    });
+    if clicked {
+        meant = Some(PathBuf::from(&typed));
+    }
+    let Some(path) = meant else { return };
+    scope.out.push(Command::Carry(match sheet {
+        CarrySheet::Onto => CarryCommand::OpenOnto(path),
+        CarrySheet::LoadMap => CarryCommand::LoadMap(path),
+        CarrySheet::SaveMap => CarryCommand::SaveMap(path),
+        CarrySheet::Export => CarryCommand::Export(path),
+    }));
+}
+
+/// The files that are open already.
+fn open_files_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let Some(project) = &scope.bench.project else { return };
+    let own = scope.bench.work().map(|work| work.source);
+    let others: Vec<(usize, String)> = project
+        .document()
+        .sources
+        .iter()
+        .enumerate()
+        .filter(|(index, _)| Some(*index) != own)
+        .map(|(index, source)| (index, file_name(&source.path)))
+        .collect();
+    if others.is_empty() {
+        return;
+    }
+    ui.horizontal_wrapped(|ui| {
+        ui.label("Open already");
+        for (index, name) in others {
+            if ui.button(name).clicked() {
+                scope.out.push(Command::Carry(CarryCommand::Onto(index)));
+                scope.out.push(Command::CloseDialog);
+            }
+        }
+    });
+}

@@ -1,0 +1,241 @@
+//! The retarget sheet driven by accessible labels: a captured walk onto a game figure. What is asserted is the document.
+
+use std::path::{Path, PathBuf};
+
+use egui_kittest::Harness;
+use egui_kittest::kittest::{NodeT as _, Queryable as _};
+use turnwright::app::commands::{Action, CarryCommand, CarrySheet, Command};
+use turnwright::app::paint::CpuRenderer;
+use turnwright::app::view_models::CarryState;
+use turnwright::app::{Screen as _, Start, Window};
+use turnwright::exchange::{ClipAddress, OpenOptions, disk, open};
+use turnwright::retarget::{HoldAt, KeptLimits};
+use turnwright::scene::{PassId, RetargetPass};
+
+use crate::support::shared;
+
+struct Sheet<'a>(Harness<'a, Option<Window>>);
+
+impl Sheet<'_> {
+    fn open(clip: &Path, size: [f32; 2]) -> Self {
+        let start = Start::Files(vec![ClipAddress { path: clip.to_owned(), clip: None }]);
+        let harness = Harness::builder().with_size(size).renderer(CpuRenderer::new(2)).build_ui_state(
+            move |ui, window: &mut Option<Window>| {
+                let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
+                window.logic(ui.ctx());
+                window.ui(ui);
+            },
+            None,
+        );
+        let mut sheet = Self(harness);
+        sheet.run();
+        sheet
+    }
+
+    fn run(&mut self) {
+        self.0.run_steps(4);
+    }
+
+    fn window(&self) -> &Window {
+        self.0.state().as_ref().expect("the window is made in the first frame")
+    }
+
+    fn ask(&mut self, command: Command) {
+        self.0.state_mut().as_mut().expect("a window").ask(command);
+        self.run();
+    }
+
+    #[track_caller]
+    fn click(&mut self, label: &str) {
+        self.0.get_by_label(label).click();
+        self.run();
+    }
+
+    #[track_caller]
+    fn click_beginning(&mut self, beginning: &str) {
+        self.0.get_all_by_label_contains(beginning).next().expect("a widget with that label").click();
+        self.run();
+    }
+
+    #[track_caller]
+    fn pass(&self) -> (PassId, RetargetPass) {
+        self.window().bench().carried_pass().expect("a retarget")
+    }
+
+    /// Steps that undo can take back.
+    fn steps(&self) -> usize {
+        self.window().bench().project.as_ref().expect("a project").history.steps().1
+    }
+
+    fn undo(&mut self) {
+        self.0.key_press_modifiers(egui::Modifiers::COMMAND, egui::Key::Z);
+        self.run();
+    }
+
+    fn messages(&self) -> String {
+        self.window().messages().collect::<Vec<_>>().join("\n")
+    }
+}
+
+fn files() -> Option<(PathBuf, PathBuf)> {
+    Some((shared("data/bvh/walk01.bvh")?, shared("data/gltf/biped23_movement_clips.glb")?))
+}
+
+#[test]
+fn a_walk_is_carried_onto_a_figure_changed_and_exported() {
+    let Some((walk, figure)) = files() else { return };
+    let folder = tempfile::tempdir().expect("a folder");
+    let mut sheet = Sheet::open(&walk, [1440.0, 900.0]);
+    sheet.ask(Command::Do(Action::Retarget));
+    sheet.0.get_by_label("Use this file");
+    sheet.ask(Command::Carry(CarryCommand::OpenOnto(figure.clone())));
+    let (_, pass) = sheet.pass();
+    assert_eq!((pass.onto, pass.plant_feet, pass.rows.len()), (1, true, 0), "{}", sheet.messages());
+    let document = sheet.window().bench().project.as_ref().expect("a project").document().clone();
+    assert!(document.sources.len() == 2 && document.works.len() > 2);
+    sheet.0.get_by_label("Source figure");
+    sheet.0.get_by_label("Target figure");
+    assert!(sheet.0.get_all_by_label_contains("joints driven").next().is_some(), "the report is there");
+    let before = sheet.steps();
+
+    // A row is chosen, kept at rest, and taken back in one step.
+    sheet.click_beginning("Map head from");
+    let row = sheet.window().bench().session.carry.row.expect("a row");
+    sheet.click("Keep at rest");
+    assert_eq!(sheet.pass().1.rows, [(None, Some("head".to_owned()))]);
+    let facts = sheet.window().bench().carry.as_ref().expect("work").facts.clone().expect("facts");
+    let own = facts.rows.iter().find(|own| own.target == row).expect("the row");
+    assert_eq!(own.state, CarryState::KeptAtRest);
+    assert_eq!(sheet.steps(), before + 1);
+    // Another joint from the list.
+    sheet.click("Source joint that drives head");
+    sheet.click("Neck");
+    assert_eq!(sheet.pass().1.rows, [(Some("Neck".to_owned()), Some("head".to_owned()))]);
+    sheet.undo();
+    sheet.undo();
+    assert!(sheet.pass().1.rows.is_empty());
+    assert_eq!(sheet.steps(), before);
+
+    // Rest poses and limits: one step each.
+    sheet.click("Rest poses");
+    sheet.click("Target rest straightened");
+    assert!(sheet.pass().1.rests[1].is_straightened && !sheet.pass().1.rests[0].is_straightened);
+    sheet.click("Source rests as in a frame");
+    assert_eq!(sheet.pass().1.rests[0].frame_secs, Some(0.0));
+    sheet.click("Within adult limits");
+    assert_eq!(sheet.pass().1.limits, Some(KeptLimits::Adult));
+    assert!(sheet.0.get_all_by_label_contains("Limits adult").next().is_some(), "their use is in the report");
+    assert_eq!(sheet.steps(), before + 3);
+
+    // A hand at the other hand, then at the point where it is.
+    sheet.ask(Command::Scrub(1.0));
+    sheet.click("Lane Left hand");
+    sheet.click("New: Left hand");
+    assert_eq!(sheet.pass().1.hands.len(), 1);
+    sheet.click("Hold at the other hand");
+    assert_eq!(sheet.pass().1.hands[0].at, HoldAt::OtherHand);
+    sheet.click("Hold at a point");
+    assert!(matches!(sheet.pass().1.hands[0].at, HoldAt::Place(place) if place.length() > 0.1));
+    sheet.click("Take away");
+    assert!(sheet.pass().1.hands.is_empty());
+
+    // The result goes into a copy of the figure's file.
+    sheet.ask(Command::Carry(CarryCommand::Ask(CarrySheet::Export)));
+    let path = folder.path().join("carried.glb");
+    sheet.ask(Command::Carry(CarryCommand::Export(path.clone())));
+    assert!(sheet.messages().contains("Exported carried.glb"), "{}", sheet.messages());
+    let [own, made] = [&figure, &path].map(|path| open(path, &OpenOptions::default()).expect("it opens"));
+    assert_eq!(made.clips.len(), own.clips.len() + 1);
+
+    sheet.click("Back to the bench");
+    sheet.0.get_by_label("Turn map rows");
+}
+
+#[test]
+fn a_contact_that_is_dragged_is_one_step() {
+    let Some((walk, figure)) = files() else { return };
+    let mut sheet = Sheet::open(&walk, [1440.0, 900.0]);
+    sheet.ask(Command::Carry(CarryCommand::OpenOnto(figure)));
+    let before = sheet.steps();
+    let found =
+        sheet.window().bench().carry.as_ref().expect("work").facts.clone().expect("facts").found.clone();
+    let bars: Vec<egui::Rect> =
+        sheet.0.get_all_by_label_contains(" found from ").map(|node| node.rect()).collect();
+    assert_eq!(bars.len(), found.len());
+    // The end of the longest bar, to the right.
+    let longest =
+        bars.iter().copied().reduce(|a, b| if b.width() > a.width() { b } else { a }).expect("a bar");
+    let from = egui::pos2(longest.right() - 4.0, longest.center().y);
+    let to = from + egui::vec2(-30.0, 0.0);
+    sheet.0.hover_at(from);
+    sheet.0.step();
+    sheet.0.drag_at(from);
+    sheet.0.step();
+    sheet.0.hover_at(from + egui::vec2(-12.0, 0.0));
+    sheet.0.step();
+    assert!(sheet.window().bench().preview.is_some(), "it is shown while it is dragged");
+    assert_eq!(sheet.steps(), before);
+    sheet.0.hover_at(to);
+    sheet.0.step();
+    sheet.0.drop_at(to);
+    sheet.run();
+    let said = sheet.pass().1.feet.expect("the contacts stand in the pass now");
+    let changed: Vec<_> = said.iter().zip(&found).filter(|(own, found)| own != found).collect();
+    let [(own, was)] = changed.as_slice() else { panic!("{changed:?}") };
+    assert!(own.span_secs[0] == was.span_secs[0] && own.span_secs[1] < was.span_secs[1], "{own:?} {was:?}");
+    assert_eq!(sheet.steps(), before + 1);
+    sheet.click("Feet as found");
+    assert!(sheet.pass().1.feet.is_none());
+
+    // By keyboard: a bar that has the focus moves by a frame, and Delete takes it away.
+    sheet.0.get_all_by_label_contains(" found from ").next().expect("a bar").focus();
+    sheet.run();
+    sheet.0.key_press(egui::Key::ArrowRight);
+    sheet.run();
+    let moved = sheet.pass().1.feet.expect("said");
+    assert_ne!(moved, found);
+    sheet.0.key_press(egui::Key::Delete);
+    sheet.run();
+    assert_eq!(sheet.pass().1.feet.expect("said").len(), found.len() - 1);
+}
+
+#[test]
+fn a_map_is_saved_loaded_and_what_is_wrong_is_told_in_the_sheet() {
+    let Some((walk, figure)) = files() else { return };
+    let folder = tempfile::tempdir().expect("a folder");
+    let mut sheet = Sheet::open(&walk, [1280.0, 720.0]);
+    sheet.ask(Command::Do(Action::Retarget));
+    sheet.ask(Command::Carry(CarryCommand::OpenOnto(folder.path().join("missing.glb"))));
+    assert!(sheet.0.get_all_by_label_contains("missing.glb").next().is_some());
+    sheet.ask(Command::Carry(CarryCommand::OpenOnto(figure)));
+    let path = folder.path().join("map.csv");
+    sheet.click("Save map…");
+    sheet.ask(Command::Carry(CarryCommand::SaveMap(path.clone())));
+    let text = String::from_utf8(disk::read(&path).expect("it is written")).expect("text");
+    assert!(text.contains("source,target,confidence,reason") && text.lines().count() > 15, "{text}");
+    disk::write(&path, b"source,target\n,head\n").expect("it writes");
+    sheet.click("Load map…");
+    sheet.ask(Command::Carry(CarryCommand::LoadMap(path.clone())));
+    assert_eq!(sheet.pass().1.rows, [(None, Some("head".to_owned()))]);
+    sheet.click("Forget corrections");
+    assert!(sheet.pass().1.rows.is_empty());
+    disk::write(&path, b"source,target\nNose,head\n").expect("it writes");
+    sheet.click("Load map…");
+    sheet.ask(Command::Carry(CarryCommand::LoadMap(path)));
+    assert!(sheet.0.get_all_by_label_contains("found `Nose`").next().is_some());
+}
+
+#[test]
+fn an_animal_gets_questions_and_no_arms() {
+    let (Some(walk), Some(fox)) = (shared("data/bvh/walk01.bvh"), shared("data/gltf/Fox.glb")) else {
+        return;
+    };
+    let mut sheet = Sheet::open(&walk, [1280.0, 720.0]);
+    sheet.ask(Command::Carry(CarryCommand::OpenOnto(fox)));
+    let facts = sheet.window().bench().carry.as_ref().expect("work").facts.clone().expect("facts");
+    assert!(facts.rows.iter().any(|row| row.is_question), "{:?}", facts.rows);
+    assert!(!facts.setting.map.doubts.is_empty());
+    sheet.click_beginning("Questions (");
+    assert!(sheet.window().bench().session.carry.questions_only);
+    assert!(sheet.0.get_all_by_label_contains("to be looked at").next().is_some());
+}
