@@ -5,13 +5,14 @@ mod files;
 mod limits;
 mod markers;
 mod orders;
+mod passes;
 mod playing;
 mod snags;
 mod time;
 
 use egui::Context;
 
-use super::commands::{Action, Command};
+use super::commands::{Action, Command, Offer};
 use super::panels::{Dialog, Form, Message, Then};
 use super::session::Fit;
 use super::view_models::{CurveView, HeatKind, TimeChoice};
@@ -119,6 +120,10 @@ impl Window {
             }
             A::Undo | A::Redo => self.step_history(action == A::Redo),
             A::History => self.show_dialog(Dialog::History),
+            A::AddResample => self.add_pass(Offer::Resample),
+            A::AddLimits => self.add_pass(Offer::Limits),
+            A::AddSmooth => self.add_pass(Offer::Smooth),
+            A::AddReduce => self.add_pass(Offer::Reduce),
             A::Fit => self.bench.session.fit = Some(Fit::Again),
             A::Follow => {
                 self.bench.session.follows ^= true;

@@ -4,7 +4,7 @@ use std::collections::BTreeSet;
 
 use crate::clip::Clip;
 use crate::raster::Camera;
-use crate::scene::SnagMark;
+use crate::scene::{PassId, SnagMark};
 
 use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeChoice, TimeWindow};
 
@@ -115,6 +115,8 @@ pub struct Session {
     pub filter: SnagFilter,
     /// In which order.
     pub order: SnagOrder,
+    /// The pass whose form is open.
+    pub open_pass: Option<PassId>,
     /// Whether the mend of the chosen snag is shown before it is accepted.
     pub looks: bool,
 }
@@ -140,6 +142,7 @@ impl Default for Session {
             folded: BTreeSet::new(),
             filter: SnagFilter::default(),
             order: SnagOrder::default(),
+            open_pass: None,
             looks: false,
         }
     }

@@ -29,6 +29,7 @@
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
 //! | `gui_start` | the real program where no window can open |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
+//! | `gui_time` | turn map, timeline, passes and snags: choices, forms, markers, what is looked for |
 //! | `gui_window` | the whole window, driven by accessible labels; what is asserted is the document |
 //! | `raster` | small pictures of one subject each |
 //! | `retarget` | clips carried to another skeleton: worked examples, identities, what must not matter, captures on figures |
@@ -67,6 +68,8 @@ mod gui_paint;
 mod gui_screen;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
+#[cfg(feature = "gui-tests")]
+mod gui_time;
 #[cfg(feature = "gui-tests")]
 mod gui_window;
 mod hostile;

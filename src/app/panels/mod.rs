@@ -6,6 +6,7 @@ mod dialogs;
 mod joint_sheet;
 mod menus;
 mod messages;
+mod pass_forms;
 mod passes;
 mod skeleton;
 mod snags;
