@@ -239,6 +239,7 @@ impl Screen for Window {
         // Wishes of this frame scroll in the next.
         scope.pictures.scroll_to_joint = None;
         scope.pictures.scroll_to_snag = false;
+        scope.pictures.scroll_to_form = false;
         scope.pictures.hovered = None;
         if let Some(dialog) = &self.dialog {
             panels::dialogs_ui(ui.ctx(), dialog, &mut self.form, &mut scope);

@@ -73,5 +73,6 @@ impl Window {
     pub(super) fn open_pass(&mut self, pass: Option<PassId>) {
         self.bench.preview = None;
         self.bench.session.open_pass = pass;
+        self.pictures.scroll_to_form = pass.is_some();
     }
 }

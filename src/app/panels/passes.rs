@@ -182,6 +182,9 @@ fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut S
         })
         .response;
     ui.painter().hline(response.rect.x_range(), response.rect.bottom(), (1.0, look.grid));
+    if is_open && scope.pictures.scroll_to_form {
+        response.scroll_to_me(Some(egui::Align::Min));
+    }
 }
 
 /// How much of a pass is taken. While it is dragged the window shows the result; letting go is one step of the history.

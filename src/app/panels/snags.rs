@@ -8,7 +8,7 @@ use egui::{
 use super::super::commands::{Action, Command};
 use super::super::jobs::Slot;
 use super::super::theme::{INSET, Look, ROW_HEIGHT};
-use super::super::view_models::{SnagOrder, SnagRow, SnagState};
+use super::super::view_models::{SnagFilter, SnagOrder, SnagRow, SnagState};
 use super::super::widgets::{action_button, focus_ring, hint, letter_plate, strip, tooltip_text};
 use super::Scope;
 use super::menus::entry_ui;
@@ -77,8 +77,30 @@ fn empty_words(scope: &Scope<'_>, total: usize) -> &'static str {
     }
 }
 
+/// Which snags are listed, and what is looked for. Where there is little room the filter is a menu.
 fn filter_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    /// The fields beside each other take as much.
+    const ROOM: f32 = 375.0;
+    search_ui(ui, scope);
+    ui.add_space(6.0);
     let mut filter = scope.bench.session.filter.clone();
+    if ui.available_width() > ROOM {
+        filter_fields(ui, &mut filter, scope);
+    } else {
+        let is_plain = filter == SnagFilter::default();
+        let menu = ui.menu_button(if is_plain { "Filter" } else { "Filter (on)" }, |ui| {
+            ui.set_min_width(170.0);
+            filter_fields(ui, &mut filter, scope);
+        });
+        menu.response
+            .on_hover_text("Which snags are listed: by kind, joint, size, and whether they are open");
+    }
+    if filter != scope.bench.session.filter {
+        scope.out.push(Command::SetFilter(filter));
+    }
+}
+
+fn filter_fields(ui: &mut Ui, filter: &mut SnagFilter, scope: &Scope<'_>) {
     let count = |kind: SnagKind| scope.bench.snags().iter().filter(|snag| snag.kind == kind).count();
     ui.checkbox(&mut filter.only_open, "Open only");
     ui.add_space(6.0);
@@ -114,11 +136,6 @@ fn filter_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let response = ui.add(least).on_hover_text("Only snags of at least this size. Drag, or click and type");
     let shown = filter.least_deg;
     response.widget_info(|| WidgetInfo::slider(true, f64::from(shown), "Least size"));
-    ui.add_space(6.0);
-    search_ui(ui, scope);
-    if filter != scope.bench.session.filter {
-        scope.out.push(Command::SetFilter(filter));
-    }
 }
 
 /// What snags are looked for with: limits, the loop's seam, sliding feet. A change looks for them anew and can be undone.

@@ -2,7 +2,7 @@
 
 use std::ops::RangeInclusive;
 
-use egui::{DragValue, Response, RichText, Role, Ui, WidgetInfo};
+use egui::{DragValue, Response, Role, Ui, WidgetInfo};
 
 /// What a form was given.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
@@ -119,6 +119,15 @@ pub(super) fn choice<T: PartialEq + Copy>(
     .inner
 }
 
+/// Words before a field, for eyes alone: the field bears them as its own name.
 fn label(ui: &mut Ui, words: &str) {
-    ui.add_sized([86.0, 18.0], egui::Label::new(RichText::new(words).size(12.5)).halign(egui::Align::Min));
+    let (bounds, _) = ui.allocate_exact_size(egui::vec2(62.0, 18.0), egui::Sense::hover());
+    let ink = ui.visuals().text_color();
+    ui.painter().text(
+        bounds.left_center(),
+        egui::Align2::LEFT_CENTER,
+        words,
+        egui::FontId::proportional(12.5),
+        ink,
+    );
 }
