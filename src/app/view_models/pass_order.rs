@@ -4,17 +4,22 @@ use crate::scene::{Pass, PassStep};
 
 /// The order of passes: faults first, then what changes frames, bodies and motion, then what a person shaped, then what holds
 /// for the whole: limits, filter, and last of all fewer keys.
-fn rank(step: &PassStep) -> u8 {
-    match step {
-        PassStep::Mend(_) => 0,
-        PassStep::Resample(_) => 1,
-        PassStep::Blend(_) => 2,
-        PassStep::Retarget(_) => 3,
-        PassStep::Push(_) | PassStep::Keys(_) => 4,
-        PassStep::Limits(_) => 6,
-        PassStep::Smooth(_) => 7,
-        PassStep::Reduce(_) => 8,
-    }
+fn rank(step: &PassStep) -> usize {
+    let places: [fn(&PassStep) -> bool; 5] = [
+        |step| matches!(step, PassStep::Mend(_)),
+        |step| matches!(step, PassStep::Resample(_)),
+        |step| matches!(step, PassStep::Blend(_)),
+        |step| matches!(step, PassStep::Retarget(_)),
+        |step| matches!(step, PassStep::Push(_) | PassStep::Keys(_)),
+    ];
+    let last: [fn(&PassStep) -> bool; 3] = [
+        |step| matches!(step, PassStep::Limits(_)),
+        |step| matches!(step, PassStep::Smooth(_)),
+        |step| matches!(step, PassStep::Reduce(_)),
+    ];
+    // Kinds that are named nowhere stand between the two.
+    let at_end = last.iter().position(|is_it| is_it(step)).map(|place| places.len() + 1 + place);
+    at_end.or_else(|| places.iter().position(|is_it| is_it(step))).unwrap_or(places.len())
 }
 
 /// The index at which a new pass is put: behind the last one that goes before it, wherever a person has moved that one to.
