@@ -390,6 +390,11 @@ impl Bench {
         edit.apply(&alone).ok().and_then(|mut after| after.works.pop()).map(|work| work.passes)
     }
 
+    /// Whether the chosen snag is shown mended though it is open.
+    pub fn looks_at_mend(&self) -> bool {
+        self.looked_at().is_some()
+    }
+
     /// Whether what is shown is not what the document says: a parameter is dragged, or a mend is looked at.
     pub fn is_trying(&self) -> bool {
         self.preview.is_some() || self.trial.is_some() || self.looked_at().is_some()

@@ -8,19 +8,20 @@ mod files;
 mod limits;
 mod markers;
 mod orders;
+mod passes;
 mod playing;
 mod snags;
 mod time;
 
 use egui::Context;
 
-use super::commands::{Action, Command, CurveAction};
+use super::commands::{Action, Command, CurveAction, Offer};
 use super::panels::{Dialog, Form, Message, Then};
 use super::session::Fit;
 use super::view_models::{CurveView, HeatKind, TimeChoice};
 use super::window::Window;
 use crate::raster::{Lens, StraightView};
-use crate::scene::{Edit, LoopPass};
+use crate::scene::{ClipWork, Edit, LoopPass};
 
 use limits::LimitsFrom;
 
@@ -130,6 +131,10 @@ impl Window {
             }
             A::Undo | A::Redo => self.step_history(action == A::Redo),
             A::History => self.show_dialog(Dialog::History),
+            A::AddResample => self.add_pass(Offer::Resample),
+            A::AddLimits => self.add_pass(Offer::Limits),
+            A::AddSmooth => self.add_pass(Offer::Smooth),
+            A::AddReduce => self.add_pass(Offer::Reduce),
             A::Fit => self.bench.session.fit = Some(Fit::Again),
             A::Follow => {
                 self.bench.session.follows ^= true;
@@ -202,7 +207,9 @@ impl Window {
             A::BlendIn => self.show_dialog(Dialog::Blend),
             A::MakeLoop => {
                 let (work, step) = (self.bench.session.work, LoopPass::default().into());
+                let pass = self.bench.work().map(ClipWork::next_pass_id);
                 self.edit(&Edit::AddPass { work, step, at: usize::MAX });
+                self.open_pass(pass);
             }
             A::BlendLane => self.bench.session.blend.shows_lane ^= true,
             A::BlendClips => self.bench.session.blend.shows_clips ^= true,

@@ -180,6 +180,8 @@ pub(crate) struct Pictures {
     pub curve_press: Option<CurvePress>,
     /// The snag table is to bring the chosen snag into view.
     pub scroll_to_snag: bool,
+    /// The list of passes is to bring the open form into view.
+    pub scroll_to_form: bool,
 }
 
 /// A clip by its identity.

@@ -6,7 +6,7 @@ use std::collections::BTreeSet;
 
 use crate::clip::Clip;
 use crate::raster::Camera;
-use crate::scene::SnagMark;
+use crate::scene::{PassId, SnagMark};
 
 use super::blend_state::BlendHabits;
 use super::carry_state::CarryHabits;
@@ -128,6 +128,8 @@ pub struct Session {
     pub filter: SnagFilter,
     /// In which order.
     pub order: SnagOrder,
+    /// The pass whose form is open.
+    pub open_pass: Option<PassId>,
     /// Whether the mend of the chosen snag is shown before it is accepted.
     pub looks: bool,
     /// How the blend lane is set.
@@ -160,6 +162,7 @@ impl Default for Session {
             folded: BTreeSet::new(),
             filter: SnagFilter::default(),
             order: SnagOrder::default(),
+            open_pass: None,
             looks: false,
             blend: BlendHabits::default(),
             carry: CarryHabits::default(),

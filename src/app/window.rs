@@ -258,6 +258,7 @@ impl Screen for Window {
         // Wishes of this frame scroll in the next.
         scope.pictures.scroll_to_joint = None;
         scope.pictures.scroll_to_snag = false;
+        scope.pictures.scroll_to_form = false;
         scope.pictures.hovered = None;
         scope.pictures.carry_hovered = [None; 2];
         if let Some(dialog) = &self.dialog {

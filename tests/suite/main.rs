@@ -33,6 +33,7 @@
 //! | `gui_start` | the real program where no window can open |
 //! | `gui_two` | two clips in the window: the blend lane, its pictures and forms, loops |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
+//! | `gui_time` | turn map, timeline, passes and snags: choices, forms, markers, what is looked for |
 //! | `gui_window` | the whole window, driven by accessible labels; what is asserted is the document |
 //! | `raster` | small pictures of one subject each |
 //! | `retarget` | clips carried to another skeleton: worked examples, identities, what must not matter, captures on figures |
@@ -77,6 +78,8 @@ mod gui_screen;
 mod gui_start;
 #[cfg(feature = "gui-tests")]
 mod gui_two;
+#[cfg(feature = "gui-tests")]
+mod gui_time;
 #[cfg(feature = "gui-tests")]
 mod gui_window;
 mod hostile;

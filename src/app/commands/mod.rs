@@ -26,7 +26,7 @@ pub use carry::{CarryCommand, CarrySheet};
 pub use situation::Situation;
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
 pub(crate) use time::LEARNED;
-pub use time::TimeCommand;
+pub use time::{Offer, TimeCommand};
 
 /// What panels ask for. It is done between frames, so that no panel sees a half-changed world.
 #[derive(Clone, Debug)]

@@ -3,7 +3,7 @@
 use egui::{Key, KeyboardShortcut, Modifiers};
 
 use super::super::view_models::{CurveView, HeatKind};
-use super::time::LEARNED;
+use super::time::{LEARNED, Offer};
 use super::{Action, CurveAction, Menu, Situation};
 
 /// One entry of the table.
@@ -183,6 +183,10 @@ pub const TABLE: &[Entry] = &{
             CLIP,
         )
         .switch(|now| now.carries),
+        entry(E, A::AddResample, "Add pass: resample", Offer::Resample.tooltip(), None, CLIP).group(),
+        entry(E, A::AddLimits, "Add pass: limits", Offer::Limits.tooltip(), None, CLIP),
+        entry(E, A::AddSmooth, "Add pass: smooth", Offer::Smooth.tooltip(), None, CLIP),
+        entry(E, A::AddReduce, "Add pass: reduce keys", Offer::Reduce.tooltip(), None, CLIP),
         entry(V, A::Fit, "Fit figure", "Bring the whole figure into view", Some(ctrl(Key::Num7)), CLIP),
         entry(
             V,

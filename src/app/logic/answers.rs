@@ -57,6 +57,8 @@ pub(crate) enum Answer {
         serial: u64,
         /// For which clip.
         work: usize,
+        /// They are for a new pass, not for the search.
+        is_for_pass: bool,
         /// The limits and what is to be told about them, or why there are none.
         result: Fitted,
     },
@@ -132,7 +134,9 @@ impl Window {
                 self.dialog = Some(Dialog::Columns(path, names));
             }
             Answer::SceneOpened(result) => self.take_scene(result),
-            Answer::Limits { serial, work, result } => self.take_limits(serial, work, result),
+            Answer::Limits { serial, work, is_for_pass, result } => {
+                self.take_limits(serial, work, is_for_pass, result);
+            }
             Answer::Surveyed { serial, work, searched, snags } => {
                 if let Some(findings) =
                     self.project_mut(serial).and_then(|project| project.findings.get_mut(work))

@@ -87,6 +87,7 @@ impl Window {
         self.bench.session.blend.shows_lane = true;
         self.dialog = None;
         self.edit(&Edit::AddPass { work, step: blend.into(), at: usize::MAX });
+        self.open_pass(pass);
     }
 
     fn open_second(&mut self, path: PathBuf) {

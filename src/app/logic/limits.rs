@@ -67,20 +67,40 @@ impl Window {
 
     /// Works limits out; they become part of the scene once they are there.
     pub(super) fn work_out_limits(&mut self, from: LimitsFrom) {
-        let Some(clip) = self.bench.source().cloned() else { return };
+        let clip = self.bench.source().cloned();
+        self.submit_limits(from, clip, false);
+    }
+
+    /// Works limits out for a pass, which is added once they are there.
+    pub(super) fn work_out_limits_pass(&mut self, from: LimitsFrom) {
+        let clip = self.bench.result().cloned();
+        self.submit_limits(from, clip, true);
+    }
+
+    fn submit_limits(&mut self, from: LimitsFrom, clip: Option<Arc<Clip>>, is_for_pass: bool) {
+        let Some(clip) = clip else { return };
         let serial = self.bench.project.as_ref().map_or(0, |project| project.serial);
         let work = self.bench.session.work;
         self.jobs.submit(Slot::Limits, move |watch| {
             let result = from.fit(&clip, watch)?;
-            Some(Answer::Limits { serial, work, result })
+            Some(Answer::Limits { serial, work, is_for_pass, result })
         });
     }
 
-    pub(super) fn take_limits(&mut self, serial: u64, work: usize, result: Fitted) {
+    pub(super) fn take_limits(&mut self, serial: u64, work: usize, is_for_pass: bool, result: Fitted) {
         if self.project_mut(serial).is_none() {
             return;
         }
         match result {
+            Ok((limits, note)) if is_for_pass => {
+                if work == self.bench.session.work {
+                    self.put_limits(limits);
+                }
+                if let Some(note) = note {
+                    let why = "No limits are set for this clip, so the preset for adults is used";
+                    self.tell(Message::note(format!("{why}. {note}")));
+                }
+            }
             Ok((limits, note)) => {
                 self.edit(&Edit::SetLimits { work, limits: Some(limits) });
                 if let Some(note) = note {

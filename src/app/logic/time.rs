@@ -13,6 +13,8 @@ impl Window {
         match command {
             TimeCommand::Choose(choice) => self.choose(choice),
             TimeCommand::ReadLimits(path) => self.work_out_limits(LimitsFrom::File(path)),
+            TimeCommand::AddPass(offer) => self.add_pass(offer),
+            TimeCommand::OpenPass(pass) => self.open_pass(pass),
             TimeCommand::NameMarker(at, name) => self.name_marker(at, &name),
             TimeCommand::AskMarkerName(at) => self.ask_marker_name(at),
         }

@@ -30,7 +30,7 @@ pub(crate) fn menus_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     });
 }
 
-fn entry_ui(ui: &mut Ui, entry: &Entry, now: &Situation, look: &Look, out: &mut Vec<Command>) {
+pub(super) fn entry_ui(ui: &mut Ui, entry: &Entry, now: &Situation, look: &Look, out: &mut Vec<Command>) {
     let label = match (entry.action, &now.undo, &now.redo) {
         (Action::Undo, Some(what), _) => format!("Undo: {what}"),
         (Action::Redo, _, Some(what)) => format!("Redo: {what}"),

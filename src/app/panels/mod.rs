@@ -10,6 +10,7 @@ mod dialogs;
 mod joint_sheet;
 mod menus;
 mod messages;
+mod pass_forms;
 mod passes;
 mod skeleton;
 mod snags;

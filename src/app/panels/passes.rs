@@ -2,13 +2,13 @@
 
 use egui::{Color32, FontId, Rect, Role, ScrollArea, Sense, Slider, Ui, WidgetInfo, vec2};
 
-use super::super::commands::Command;
+use super::super::commands::{Action, Command, Offer, TimeCommand};
 use super::super::theme::{INSET, Look};
 use super::super::view_models::{PassRow, pass_rows};
-use super::super::widgets::{Icon, hint, paint_icon, strip};
+use super::super::widgets::{Icon, focus_ring, hint, paint_icon, strip};
 use super::Scope;
-use super::blend_form::blend_form_ui;
-use crate::scene::{Edit, PassStep};
+use super::pass_forms::form_ui;
+use crate::scene::Edit;
 
 /// The panel.
 pub(crate) fn passes_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
@@ -18,10 +18,13 @@ pub(crate) fn passes_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         pass_rows(work, evaluated.map(|evaluated| &*evaluated.evaluation))
     });
     let rows = rows.unwrap_or_default();
-    strip(ui, "Passes", |_| {});
+    strip(ui, "Passes", |ui| add_ui(ui, scope));
     ui.painter().vline(ui.max_rect().left(), ui.max_rect().y_range(), (1.0, look.line));
     if rows.is_empty() {
-        hint(ui, "Nothing is changed yet. Each mend becomes a pass here: ordered, switchable, measured");
+        hint(
+            ui,
+            "Nothing is changed yet. Each mend becomes a pass here: ordered, switchable, measured. Add pass offers more",
+        );
         return;
     }
     let changes = scope.bench.findings().and_then(|findings| findings.evaluated.as_ref());
@@ -49,6 +52,35 @@ pub(crate) fn passes_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     }
 }
 
+/// The menu of passes to add. A new one acts on what is chosen on the turn map.
+fn add_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let has_clip = scope.now.has_clip;
+    ui.add_enabled_ui(has_clip, |ui| {
+        let menu = ui.menu_button("Add pass", |ui| {
+            ui.set_min_width(200.0);
+            let choice = &scope.bench.session.choice;
+            let words = scope.bench.result().map_or(String::new(), |clip| choice.words(clip));
+            ui.label(egui::RichText::new(format!("acts on {words}")).size(12.0).color(scope.look.faint));
+            ui.separator();
+            for offer in Offer::ALL {
+                if ui.button(offer.label()).on_hover_text(offer.tooltip()).clicked() {
+                    scope.out.push(Command::Time(TimeCommand::AddPass(offer)));
+                    ui.close();
+                }
+            }
+        });
+        menu.response.on_hover_text("A new pass on the choice, or on everything where nothing is chosen");
+    });
+    if scope.now.has_choice {
+        let words = scope.bench.result().map_or(String::new(), |clip| scope.bench.session.choice.words(clip));
+        let button = egui::Button::new("Forget choice").small();
+        let response = ui.add(button).on_hover_text(format!("Chosen: {words}"));
+        if response.clicked() {
+            scope.out.push(Command::Do(Action::ChooseAll));
+        }
+    }
+}
+
 fn one_line(painter: &egui::Painter, bounds: Rect, words: &str, font: FontId, color: Color32) {
     let mut job = egui::text::LayoutJob::simple_singleline(words.to_owned(), font, color);
     job.wrap = egui::text::TextWrapping::truncate_at_width(bounds.width().max(8.0));
@@ -59,6 +91,7 @@ fn one_line(painter: &egui::Painter, bounds: Rect, words: &str, font: FontId, co
 fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut Scope<'_>) {
     let look = scope.look;
     let work = scope.bench.session.work;
+    let is_open = scope.bench.session.open_pass == Some(row.id);
     let frame = egui::Frame::NONE.inner_margin(egui::Margin::symmetric(INSET as i8, 5));
     let response = frame
         .show(ui, |ui| {
@@ -77,10 +110,30 @@ fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut S
                 let buttons = 3.0 * 24.0 + 2.0;
                 ui.spacing_mut().item_spacing.x = 0.0;
                 ui.add_space(4.0);
-                let (words, _) = ui.allocate_exact_size(
+                let (words, response) = ui.allocate_exact_size(
                     vec2((ui.available_width() - buttons).max(30.0), 20.0),
-                    Sense::hover(),
+                    Sense::click(),
                 );
+                response.widget_info(|| {
+                    WidgetInfo::selected(
+                        Role::DisclosureTriangle,
+                        true,
+                        is_open,
+                        format!("Settings of {}", row.title),
+                    )
+                });
+                if response.hovered() || response.has_focus() {
+                    ui.painter().rect_filled(words, 3.0, look.hover);
+                }
+                let chevron = Rect::from_min_size(words.min, vec2(14.0, words.height()));
+                let icon = if is_open { Icon::ChevronDown } else { Icon::ChevronRight };
+                paint_icon(ui.painter(), chevron.shrink2(vec2(2.0, 0.0)), icon, look.faint);
+                focus_ring(ui, &response);
+                if response.on_hover_text(row.explanation).clicked() {
+                    let next = (!is_open).then_some(row.id);
+                    scope.out.push(Command::Time(TimeCommand::OpenPass(next)));
+                }
+                let words = words.with_min_x(chevron.right() + 3.0);
                 one_line(
                     ui.painter(),
                     words,
@@ -109,9 +162,12 @@ fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut S
             if let Some(amount) = row.amount {
                 amount_ui(ui, amount, row, scope);
             }
-            let own = scope.bench.work().and_then(|work| work.pass(row.id)).map(|pass| pass.step.clone());
-            if let Some(step @ (PassStep::Blend(_) | PassStep::Loop(_))) = &own {
-                blend_form_ui(ui, row.id, step, scope);
+            let own = scope.bench.work().and_then(|work| work.pass(row.id)).filter(|_| is_open).cloned();
+            if let Some(pass) = own {
+                ui.horizontal(|ui| {
+                    ui.add_space(24.0);
+                    ui.vertical(|ui| form_ui(ui, &pass, scope));
+                });
             }
             if let Some(problem) = &row.problem {
                 ui.horizontal(|ui| {
@@ -126,7 +182,9 @@ fn pass_ui(ui: &mut Ui, place: usize, count: usize, row: &PassRow, scope: &mut S
         })
         .response;
     ui.painter().hline(response.rect.x_range(), response.rect.bottom(), (1.0, look.grid));
-    response.on_hover_text(row.explanation);
+    if is_open && scope.pictures.scroll_to_form {
+        response.scroll_to_me(Some(egui::Align::Min));
+    }
 }
 
 /// How much of a pass is taken. While it is dragged the window shows the result; letting go is one step of the history.

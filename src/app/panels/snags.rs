@@ -8,9 +8,10 @@ use egui::{
 use super::super::commands::{Action, Command};
 use super::super::jobs::Slot;
 use super::super::theme::{INSET, Look, ROW_HEIGHT};
-use super::super::view_models::{SnagOrder, SnagRow, SnagState};
-use super::super::widgets::{action_button, focus_ring, hint, letter_plate, strip};
+use super::super::view_models::{SnagFilter, SnagOrder, SnagRow, SnagState};
+use super::super::widgets::{action_button, focus_ring, hint, letter_plate, strip, tooltip_text};
 use super::Scope;
+use super::menus::entry_ui;
 use crate::scene::SnagMark;
 use crate::snag::SnagKind;
 
@@ -35,7 +36,9 @@ pub(crate) fn snags_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let rows = std::sync::Arc::clone(&scope.rows);
     let total = scope.bench.snags().len();
     let open = scope.states.iter().filter(|&&state| state == SnagState::Open).count();
+    let is_finding = scope.running.iter().any(|(slot, _)| *slot == Slot::Survey);
     let title = match total {
+        _ if is_finding => "Snags: finding…".to_owned(),
         0 => "Snags".to_owned(),
         _ => format!("Snags: {open} open of {total}"),
     };
@@ -74,8 +77,30 @@ fn empty_words(scope: &Scope<'_>, total: usize) -> &'static str {
     }
 }
 
+/// Which snags are listed, and what is looked for. Where there is little room the filter is a menu.
 fn filter_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    /// The fields beside each other take as much.
+    const ROOM: f32 = 375.0;
+    search_ui(ui, scope);
+    ui.add_space(6.0);
     let mut filter = scope.bench.session.filter.clone();
+    if ui.available_width() > ROOM {
+        filter_fields(ui, &mut filter, scope);
+    } else {
+        let is_plain = filter == SnagFilter::default();
+        let menu = ui.menu_button(if is_plain { "Filter" } else { "Filter (on)" }, |ui| {
+            ui.set_min_width(170.0);
+            filter_fields(ui, &mut filter, scope);
+        });
+        menu.response
+            .on_hover_text("Which snags are listed: by kind, joint, size, and whether they are open");
+    }
+    if filter != scope.bench.session.filter {
+        scope.out.push(Command::SetFilter(filter));
+    }
+}
+
+fn filter_fields(ui: &mut Ui, filter: &mut SnagFilter, scope: &Scope<'_>) {
     let count = |kind: SnagKind| scope.bench.snags().iter().filter(|snag| snag.kind == kind).count();
     ui.checkbox(&mut filter.only_open, "Open only");
     ui.add_space(6.0);
@@ -105,9 +130,52 @@ fn filter_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         })
         .response;
     response.widget_info(|| WidgetInfo::labeled(Role::ComboBox, true, "Kinds shown"));
-    if filter != scope.bench.session.filter {
-        scope.out.push(Command::SetFilter(filter));
+    ui.add_space(6.0);
+    let least =
+        egui::DragValue::new(&mut filter.least_deg).range(0..=360).speed(0.5).suffix("°").prefix("from ");
+    let response = ui.add(least).on_hover_text("Only snags of at least this size. Drag, or click and type");
+    let shown = filter.least_deg;
+    response.widget_info(|| WidgetInfo::slider(true, f64::from(shown), "Least size"));
+}
+
+/// What snags are looked for with: limits, the loop's seam, sliding feet. A change looks for them anew and can be undone.
+fn search_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let mut more: Vec<String> = scope.now.limits.iter().map(|title| format!("limits {title}")).collect();
+    if scope.now.search.is_loop {
+        more.push("loop".to_owned());
     }
+    if scope.now.search.finds_slides {
+        more.push("feet".to_owned());
+    }
+    let words = if more.is_empty() { "Search".to_owned() } else { format!("Search: {}", more.join(", ")) };
+    let menu = ui.menu_button(elided_words(&words, 30), |ui| {
+        ui.set_min_width(240.0);
+        for action in [
+            Action::NoLimits,
+            Action::AdultLimits,
+            Action::LearnLimits,
+            Action::LimitsFile,
+            Action::IsLoop,
+            Action::FindSlides,
+            Action::FindAgain,
+        ] {
+            if matches!(action, Action::IsLoop | Action::FindAgain) {
+                ui.separator();
+            }
+            entry_ui(ui, action.entry(), scope.now, &scope.look, scope.out);
+        }
+    });
+    menu.response.on_hover_text(format!(
+        "What snags are looked for with: {}",
+        if more.is_empty() { "the usual kinds".to_owned() } else { more.join(", ") }
+    ));
+}
+
+fn elided_words(words: &str, most: usize) -> String {
+    if words.chars().count() <= most {
+        return words.to_owned();
+    }
+    words.chars().take(most - 1).chain(['…']).collect()
 }
 
 /// The widest the names of joints get while there is something else to show.
@@ -265,7 +333,14 @@ fn details_ui(ui: &mut Ui, footer: Rect, scope: &mut Scope<'_>) {
     if footer.height() > 40.0 {
         let words = scope.bench.chosen_snag().map_or_else(
             || "Choose a snag to see what is wrong and what its mend would do".to_owned(),
-            |snag| format!("{} {}", sentence(&snag.text), snag.kind.mend_explanation()),
+            |snag| {
+                let looked = if scope.bench.looks_at_mend() {
+                    "Shown mended, not accepted yet: grey is before. "
+                } else {
+                    ""
+                };
+                format!("{looked}{} {}", sentence(&snag.text), snag.kind.mend_explanation())
+            },
         );
         let mut job = egui::text::LayoutJob::simple(
             words.clone(),
@@ -290,10 +365,22 @@ fn details_ui(ui: &mut Ui, footer: Rect, scope: &mut Scope<'_>) {
         } else {
             action_button(ui, Action::Mend, scope.now, scope.out);
         }
+        action_button(ui, Action::Leave, scope.now, scope.out);
+        look_switch(ui, scope);
+        ui.separator();
         action_button(ui, Action::MendKind, scope.now, scope.out);
         action_button(ui, Action::MendSafe, scope.now, scope.out);
-        action_button(ui, Action::Leave, scope.now, scope.out);
     });
+}
+
+/// Shows the mend of the chosen snag before it is accepted.
+fn look_switch(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let mut looks = scope.now.looks;
+    let response = ui.checkbox(&mut looks, "Look at mend");
+    let tooltip = tooltip_text(ui, Action::LookAtMend);
+    if response.on_hover_text(tooltip).changed() {
+        scope.out.push(Command::Do(Action::LookAtMend));
+    }
 }
 
 /// With one full stop at its end.

@@ -2,12 +2,13 @@
 
 use egui::{Align2, CursorIcon, FontId, Rect, Role, Sense, Ui, WidgetInfo, pos2, vec2};
 
-use super::super::commands::{Action, Command};
+use super::super::commands::{Action, Command, TimeCommand};
 use super::super::jobs::Slot;
 use super::super::theme::INSET;
 use super::super::view_models::{SnagState, rate_text, seconds};
 use super::super::widgets::{Icon, icon_button, is_quick_click};
 use super::Scope;
+use crate::scene::{Edit, MarkerChange};
 
 /// The bar along the bottom.
 pub(crate) fn transport_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
@@ -26,6 +27,7 @@ pub(crate) fn transport_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
             icon_button(ui, Icon::Last, Action::Last, scope.now, scope.out);
             ui.add_space(6.0);
             icon_button(ui, Icon::Loop, Action::Loop, scope.now, scope.out);
+            icon_button(ui, Icon::Marker, Action::AddMarker, scope.now, scope.out);
             ui.add_space(6.0);
             speed_ui(ui, scope);
             ui.add_space(8.0);
@@ -87,7 +89,16 @@ fn speed_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
 fn status_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let look = scope.look;
     let shown = scope.running.iter().find(|(slot, _)| {
-        matches!(slot, Slot::Open | Slot::Survey | Slot::Export | Slot::Save | Slot::Relocate | Slot::Heat)
+        matches!(
+            slot,
+            Slot::Open
+                | Slot::Survey
+                | Slot::Export
+                | Slot::Save
+                | Slot::Relocate
+                | Slot::Limits
+                | Slot::Heat
+        )
     });
     let Some((slot, share)) = shown else { return };
     let (button, response) = ui.allocate_exact_size(vec2(22.0, 20.0), Sense::click());
@@ -110,6 +121,91 @@ fn status_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     ui.label(egui::RichText::new(slot.label()).size(12.5).color(look.text));
 }
 
+/// The keys of the chosen joint as ticks on the rail, one for each pixel at most: where there are more the rail is full.
+fn key_marks(painter: &egui::Painter, rail: Rect, clip: &crate::clip::Clip, scope: &Scope<'_>) {
+    let Some(track) = scope.bench.session.joint.and_then(|joint| clip.rotation(joint)) else { return };
+    let duration = clip.duration_secs.max(1e-9);
+    let (count, width) = (track.times.len(), rail.width().max(1.0));
+    let ink = scope.look.faint;
+    if count as f32 > 0.5 * width {
+        // A key on each frame or nearly so: a line says it, in the time of one.
+        let (first, last) = (track.times.at(0), track.times.at(count - 1));
+        let x = |secs: f64| rail.left() + (secs / duration) as f32 * width;
+        painter.hline(x(first)..=x(last), rail.bottom() - 1.0, (2.0, ink));
+        return;
+    }
+    for secs in track.times.iter() {
+        let x = rail.left() + (secs / duration) as f32 * width;
+        painter.vline(x, rail.bottom() - 3.5..=rail.bottom(), (1.0, ink));
+    }
+}
+
+/// Named moments as flags above the rail: a click jumps there, a drag moves one, a double click renames it.
+fn markers_ui(ui: &Ui, rail: Rect, clip: &crate::clip::Clip, scope: &mut Scope<'_>) {
+    let look = scope.look;
+    let markers = scope.bench.work().map(|work| work.markers.clone()).unwrap_or_default();
+    let duration = clip.duration_secs.max(1e-9);
+    let work = scope.bench.session.work;
+    let mut free_from = f32::NEG_INFINITY;
+    for (at, marker) in markers.iter().enumerate() {
+        let id = ui.scope_id().with(("marker", at));
+        let moved: Option<f64> = ui.ctx().data(|data| data.get_temp(id));
+        let secs = moved.unwrap_or(marker.secs);
+        let x = rail.left() + ((secs / duration) as f32).clamp(0.0, 1.0) * rail.width();
+        let flag = Rect::from_min_size(pos2(x - 1.0, rail.top() - 9.0), vec2(9.0, 9.0));
+        let response = ui.interact(flag.expand(2.0), id, Sense::click_and_drag());
+        response.widget_info(|| {
+            WidgetInfo::labeled(Role::Button, true, format!("Marker {}, {}", marker.name, seconds(secs)))
+        });
+        let painter = ui.painter();
+        painter.vline(x, flag.top()..=rail.bottom(), (1.5, look.text));
+        let points =
+            vec![flag.left_top(), pos2(flag.right(), flag.top() + 3.0), pos2(flag.left(), flag.top() + 6.0)];
+        painter.add(egui::Shape::convex_polygon(points, look.text, egui::Stroke::NONE));
+        // The name, where it does not lie on the one before it.
+        let font = FontId::proportional(10.5);
+        let galley = painter.layout_no_wrap(marker.name.clone(), font, look.text);
+        let left = flag.right() + 1.0;
+        if left >= free_from && left + galley.size().x <= rail.right() + INSET {
+            let place = pos2(left, flag.top() - 4.0);
+            let plate = Rect::from_min_size(place, galley.size()).expand2(vec2(2.0, 0.0));
+            painter.rect_filled(plate, 2.0, look.panel);
+            free_from = left + galley.size().x + 8.0;
+            painter.galley(place, galley, look.text);
+        }
+        super::super::widgets::focus_ring(ui, &response);
+        if response.dragged()
+            && let Some(pointer) = response.interact_pointer_pos()
+        {
+            let time = f64::from((pointer.x - rail.left()) / rail.width()).clamp(0.0, 1.0) * duration;
+            let time = clip.grid.time(clip.grid.frame(time));
+            ui.ctx().data_mut(|data| data.insert_temp(id, time));
+        }
+        if response.drag_stopped() {
+            ui.ctx().data_mut(|data| data.remove::<f64>(id));
+            if let Some(secs) = moved {
+                let change = MarkerChange::Move { at, secs };
+                scope.out.push(Command::Edit(Edit::ChangeMarkers { work, change }));
+            }
+        } else if response.double_clicked() {
+            scope.out.push(Command::Time(TimeCommand::AskMarkerName(at)));
+        } else if response.clicked() {
+            scope.out.push(Command::Scrub(marker.secs));
+        }
+        response.context_menu(|ui| {
+            if ui.button("Rename…").clicked() {
+                scope.out.push(Command::Time(TimeCommand::AskMarkerName(at)));
+                ui.close();
+            }
+            if ui.button("Remove").clicked() {
+                let change = MarkerChange::Remove { at };
+                scope.out.push(Command::Edit(Edit::ChangeMarkers { work, change }));
+                ui.close();
+            }
+        });
+    }
+}
+
 /// All of the clip from left to right, whatever the charts show: playhead, loop range, snags.
 fn scrub_bar(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     let look = scope.look;
@@ -119,7 +215,7 @@ fn scrub_bar(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     let now = playback.playhead_secs;
     response.widget_info(|| WidgetInfo::slider(true, now, "Scrub bar"));
     let duration = clip.duration_secs.max(1e-9);
-    let rail = Rect::from_min_max(bounds.min + vec2(INSET, 9.0), bounds.max - vec2(INSET, 9.0));
+    let rail = Rect::from_min_max(bounds.min + vec2(INSET, 11.0), bounds.max - vec2(INSET, 7.0));
     let x = |time: f64| rail.left() + (time / duration) as f32 * rail.width();
     let painter = ui.painter();
     painter.rect_filled(rail, 4.0, look.line);
@@ -136,6 +232,11 @@ fn scrub_bar(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
             painter.vline(x(time), y - 3.0..=y, (1.5, look.faint));
         }
     }
+    if let Some([from, to]) = scope.bench.session.choice.span_secs {
+        let span = Rect::from_x_y_ranges(x(from)..=x(to), rail.top() - 1.0..=rail.bottom() + 1.0);
+        painter.rect_stroke(span, 2.0, (1.0, look.selection), egui::StrokeKind::Outside);
+    }
+    key_marks(painter, rail, clip, scope);
     let mut last = [f32::NEG_INFINITY; 2];
     for (snag, &state) in scope.bench.snags().iter().zip(scope.states.iter()) {
         let at = x(f64::midpoint(snag.first_secs, snag.last_secs));
@@ -171,6 +272,7 @@ fn scrub_bar(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
             own.on_hover_cursor(CursorIcon::ResizeHorizontal);
         }
     }
+    markers_ui(ui, rail, clip, scope);
     let knob = pos2(x(now), rail.center().y);
     ui.painter().circle(knob, 6.5, look.text, (2.0, look.panel));
     if let Some(pointer) = response

@@ -75,6 +75,16 @@ fn fold_switch(ui: &mut Ui, scope: &mut Scope<'_>) {
 fn legend(ui: &mut Ui, look: &Look, heat: &HeatMap) {
     let font = FontId::proportional(11.5);
     let unit = heat.kind.unit();
+    let stands_in = heat.limits.as_ref().is_some_and(|(_, is_preset)| *is_preset);
+    if heat.trouble.is_some() || stands_in {
+        let words = if stands_in { "adult preset, none set" } else { "no limits to show" };
+        let label = egui::Label::new(egui::RichText::new(words).size(11.5).color(look.faint)).truncate();
+        ui.add(label).on_hover_text(limits_words(heat));
+        ui.add_space(6.0);
+        if !stands_in {
+            return;
+        }
+    }
     let value = |share: f32| {
         let value = heat.scale.value(share);
         if value < 10.0 { format!("{}", (value * 10.0).round() / 10.0) } else { format!("{value:.0}") }
@@ -419,6 +429,9 @@ fn choosing(
     let is_own = response.is_pointer_button_down_on() || response.clicked();
     if pressed && has_key && is_own {
         scope.pictures.choosing = Some((axis.time(pointer.x), joint_at(pointer.y), pointer));
+    } else if pressed && is_own {
+        // The release of an older one was not seen.
+        scope.pictures.choosing = None;
     }
     let Some((secs, joint, start)) = scope.pictures.choosing else { return false };
     let is_drag = start.distance(pointer) > 4.0;

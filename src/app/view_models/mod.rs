@@ -16,6 +16,7 @@ mod key_drag;
 mod local_curves;
 mod map_rows;
 mod memo;
+mod pass_order;
 mod pass_rows;
 mod pyramid;
 mod sampled;
@@ -46,6 +47,7 @@ pub use key_drag::{Grip, KeyBase, KeyDrag, Stroke, key_at, on_frame, with_more, 
 pub use local_curves::{LocalCurves, local_curves};
 pub use map_rows::{MapRow, limb_starts, map_rows};
 pub use memo::Memo;
+pub use pass_order::place_for;
 pub use pass_rows::{PassRow, pass_rows};
 pub use pyramid::Pyramid;
 pub use sampled::{SampleTimes, limb_direction, rotation_at};

@@ -69,6 +69,8 @@ pub struct SnagFilter {
     pub only_open: bool,
     /// Only the chosen joint's.
     pub joint: Option<usize>,
+    /// Only those of at least so many degrees; what has no size passes.
+    pub least_deg: u16,
 }
 
 /// One row of the table.
@@ -107,6 +109,7 @@ pub fn snag_rows(
     let wanted = |state: SnagState, snag: &Snag| {
         filter.kind.is_none_or(|kind| kind == snag.kind)
             && filter.joint.is_none_or(|joint| joint == snag.joint)
+            && !(snag.size_rad.is_finite() && snag.size_rad.to_degrees() < f64::from(filter.least_deg))
             && (!filter.only_open || state == SnagState::Open)
     };
     let mut kept: Vec<(usize, SnagState, &Snag)> = snags

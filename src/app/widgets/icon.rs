@@ -23,6 +23,7 @@ pub(crate) enum Icon {
     Info,
     Fit,
     Follow,
+    Marker,
 }
 
 /// Draws an icon into the middle of a box.
@@ -85,6 +86,7 @@ pub(crate) fn paint_icon(painter: &Painter, bounds: Rect, icon: Icon, color: Col
             };
             vec![corner(-6.0, -6.0), corner(6.0, -6.0), corner(6.0, 6.0), corner(-6.0, 6.0)]
         }
+        Icon::Marker => vec![bar(-4.0, 1.5), filled(vec![at(-2.5, -5.0), at(5.0, -2.0), at(-2.5, 1.0)])],
         Icon::Follow => vec![
             Shape::circle_filled(at(-3.5, 0.0), 2.6 * unit, color),
             line(vec![at(1.0, -4.0), at(5.0, 0.0), at(1.0, 4.0)]),
