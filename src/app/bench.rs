@@ -234,9 +234,6 @@ impl<K> FromClips<K, ()> {
     }
 }
 
-/// The way of a joint's tip through space: a point for each frame.
-pub type Path3 = Vec<glam::DVec3>;
-
 /// Everything that panels read.
 #[derive(Debug, Default)]
 pub struct Bench {
@@ -246,12 +243,12 @@ pub struct Bench {
     pub session: Session,
     /// What a pass would do while one of its parameters is dragged; the document changes on letting go.
     pub preview: Option<(PassId, PassStep)>,
+    /// The passes as they would be if what is being dragged by hand were let go now.
+    pub trial: Option<Vec<Pass>>,
     /// The turn map.
     pub heat: Option<FromClips<HeatWish, Arc<HeatMap>>>,
     /// The curves of the chosen joint.
     pub curves: Option<FromClips<(usize, CurveView), Arc<CurveSet>>>,
-    /// The way of the chosen joint's tip.
-    pub tip_path: Option<FromClips<usize, Arc<Path3>>>,
     /// What is known of the blend that is looked at.
     pub blend: Option<BlendWork>,
     models: Models,
@@ -332,6 +329,9 @@ impl Bench {
 
     /// The passes to run: those of the document, with the parameters that are being dragged.
     pub fn passes(&self) -> Vec<Pass> {
+        if let Some(trial) = &self.trial {
+            return trial.clone();
+        }
         let mut passes = self.work().map(|work| work.passes.clone()).unwrap_or_default();
         if let Some(more) = self.looked_at() {
             passes = more;
@@ -355,7 +355,7 @@ impl Bench {
 
     /// Whether what is shown is not what the document says: a parameter is dragged, or a mend is looked at.
     pub fn is_trying(&self) -> bool {
-        self.preview.is_some() || self.looked_at().is_some()
+        self.preview.is_some() || self.trial.is_some() || self.looked_at().is_some()
     }
 
     /// Open snags that may be mended unasked.
@@ -455,6 +455,8 @@ impl Bench {
             has_blend: self.shown_blend().is_some(),
             shows_blend_lane: session.blend.shows_lane,
             shows_blend_clips: session.blend.shows_clips,
+            space: session.space.clone(),
+            is_mirrored: session.camera.is_mirrored,
         }
     }
 }

@@ -8,6 +8,7 @@ mod markers;
 mod orders;
 mod playing;
 mod snags;
+mod space;
 mod time;
 
 use egui::Context;
@@ -96,6 +97,7 @@ impl Window {
             Command::Cancel(slot) => self.stop(slot),
             Command::Time(command) => self.run_time(command),
             Command::Blend(command) => self.run_blend(command),
+            Command::Space(command) => self.run_space(command),
         }
     }
 
@@ -191,6 +193,7 @@ impl Window {
             }
             A::BlendLane => self.bench.session.blend.shows_lane ^= true,
             A::BlendClips => self.bench.session.blend.shows_clips ^= true,
+            A::Space(action) => self.act_in_space(action),
         }
     }
 
@@ -218,6 +221,7 @@ impl Window {
     /// Changes the document.
     pub(super) fn edit(&mut self, edit: &Edit) {
         self.bench.preview = None;
+        self.bench.trial = None;
         let Some(project) = &mut self.bench.project else { return };
         if let Err(error) = project.history.commit(edit) {
             self.tell(Message::error(format!("{}: {error}", edit.label())));
@@ -240,6 +244,7 @@ impl Window {
             project.history.undo();
         }
         self.bench.preview = None;
+        self.bench.trial = None;
         self.follow_document();
     }
 
@@ -248,6 +253,7 @@ impl Window {
         while project.history.steps().1 > step && project.history.undo() {}
         while project.history.steps().1 < step && project.history.redo() {}
         self.bench.preview = None;
+        self.bench.trial = None;
         self.follow_document();
     }
 
@@ -264,6 +270,7 @@ impl Window {
         let clip = project.source_clip(work).cloned();
         self.bench.session.turn_to(work, clip.as_deref());
         self.bench.preview = None;
+        self.bench.trial = None;
     }
 
     pub(super) fn choose_joint(&mut self, joint: Option<usize>) {

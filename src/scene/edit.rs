@@ -145,6 +145,13 @@ pub enum Edit {
         /// Which; `None` for the one the rule gives.
         rest: Option<RestChoice>,
     },
+    /// Several edits that are one step for a person, in this order.
+    Together {
+        /// What the history calls it.
+        label: String,
+        /// The edits; each is applied to what the one before it left.
+        edits: Vec<Self>,
+    },
 }
 
 /// An edit that does not fit the document.
@@ -240,6 +247,7 @@ impl Edit {
             }
             Self::ChooseRest { rest: Some(rest), .. } => format!("Rest pose: {}", rest.title()),
             Self::ChooseRest { rest: None, .. } => "Rest pose by rule".to_owned(),
+            Self::Together { label, .. } => label.clone(),
         }
     }
 
@@ -330,6 +338,11 @@ impl Edit {
                 let count = next.sources.len();
                 let error = EditError::NoSuchSource { source_index: *source, count };
                 *next.sources.get_mut(*source).ok_or(error)? = to.clone();
+            }
+            Self::Together { edits, .. } => {
+                for edit in edits {
+                    next = edit.apply(&next)?;
+                }
             }
         }
         Ok(next)

@@ -1,5 +1,7 @@
 //! What a person can ask for without further words, and the menus that hold it.
 
+use super::SpaceAction;
+
 /// An action without parameters: an entry of the table.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
 #[expect(missing_docs, reason = "each has its label and its tooltip in the table below")]
@@ -90,6 +92,7 @@ pub enum Action {
     MakeLoop,
     BlendLane,
     BlendClips,
+    Space(SpaceAction),
 }
 
 /// The menus, from left to right.
@@ -99,6 +102,7 @@ pub enum Menu {
     File,
     Edit,
     View,
+    Space,
     Snags,
     Time,
     Help,
@@ -106,7 +110,8 @@ pub enum Menu {
 
 impl Menu {
     /// All menus in order.
-    pub const ALL: [Self; 6] = [Self::File, Self::Edit, Self::View, Self::Snags, Self::Time, Self::Help];
+    pub const ALL: [Self; 7] =
+        [Self::File, Self::Edit, Self::View, Self::Space, Self::Snags, Self::Time, Self::Help];
 
     /// Its title.
     pub const fn title(self) -> &'static str {
@@ -114,6 +119,7 @@ impl Menu {
             Self::File => "File",
             Self::Edit => "Edit",
             Self::View => "View",
+            Self::Space => "Space",
             Self::Snags => "Snags",
             Self::Time => "Time",
             Self::Help => "Help",

@@ -14,12 +14,14 @@ use super::view_models::{SnagFilter, SnagOrder, TimeWindow};
 mod action;
 mod blend;
 mod situation;
+mod space;
 mod table;
 mod time;
 
 pub use action::{Action, Menu};
 pub use blend::BlendCommand;
 pub use situation::Situation;
+pub use space::{SpaceAction, SpaceCommand};
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
 pub(crate) use time::LEARNED;
 pub use time::TimeCommand;
@@ -94,4 +96,6 @@ pub enum Command {
     Time(TimeCommand),
     /// About blends and loops.
     Blend(BlendCommand),
+    /// What the skeleton view asks for.
+    Space(SpaceCommand),
 }

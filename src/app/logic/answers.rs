@@ -5,7 +5,7 @@ use std::sync::Arc;
 
 use egui::Context;
 
-use super::super::bench::{Evaluated, FromClips, Path3, Project, Searched, SourceState, file_name};
+use super::super::bench::{Evaluated, FromClips, Project, Searched, SourceState, file_name};
 use super::super::file_picker::{Picked, Purpose};
 use super::super::panels::{Dialog, Form, Level, Message};
 use super::super::view_models::{CurveSet, CurveView, HeatMap, HeatWish, TimeWindow};
@@ -72,8 +72,6 @@ pub(crate) enum Answer {
     Heat(FromClips<HeatWish, Arc<HeatMap>>),
     /// The curves.
     Curves(FromClips<(usize, CurveView), Arc<CurveSet>>),
-    /// The way of a tip.
-    TipPath(FromClips<usize, Arc<Path3>>),
     /// The scene was written, or not.
     Saved {
         /// For which project.
@@ -155,7 +153,6 @@ impl Window {
             }
             Answer::Heat(heat) => self.bench.heat = Some(heat),
             Answer::Curves(curves) => self.bench.curves = Some(curves),
-            Answer::TipPath(path) => self.bench.tip_path = Some(path),
             Answer::Saved { serial, revision, path, result } => {
                 self.take_saved(serial, revision, &path, result, ctx);
             }
@@ -239,9 +236,9 @@ impl Window {
         self.dialog = None;
         self.bench.heat = None;
         self.bench.curves = None;
-        self.bench.tip_path = None;
         self.bench.blend = None;
         self.bench.preview = None;
+        self.bench.trial = None;
         let clip = project.source_clip(work).cloned();
         self.bench.project = Some(project);
         self.bench.session.turn_to(work, clip.as_deref());
