@@ -7,6 +7,7 @@ use glam::{DVec2, DVec3};
 use turnwright::app::commands::{Action, Command, SpaceAction, SpaceCommand};
 use turnwright::app::paint::CpuRenderer;
 use turnwright::app::session::{Disc, TurnPlanes};
+use turnwright::app::view_models::Stage;
 use turnwright::app::{Screen as _, Start, Window};
 use turnwright::clip::{Clip, PushFrame};
 use turnwright::exchange::ClipAddress;
@@ -122,7 +123,12 @@ impl Bench<'_> {
     /// The view of the skeleton picture and its corner in the window.
     fn view(&self) -> (View, Pos2) {
         let bounds = self.0.get_by_label("Skeleton view").rect();
-        let camera = self.window().bench().session.camera;
+        let bench = self.window().bench();
+        let mut camera = bench.session.camera;
+        if bench.session.follows {
+            let stage = Stage::new(bench.source().expect("a source"));
+            camera.target += stage.gone(&self.result(), bench.session.playback.playhead_secs);
+        }
         (camera.view(bounds.width() as usize, bounds.height() as usize), bounds.min)
     }
 }

@@ -466,7 +466,7 @@ pub const TABLE: &[Entry] = &{
             A::Space(O::ShorterFalloff),
             "Shorter falloff",
             "A soft push on captured motion reaches less far in time",
-            Some(alt(Key::OpenBracket)),
+            Some(ctrl_alt(Key::OpenBracket)),
             CLIP,
         ),
         entry(
@@ -474,7 +474,7 @@ pub const TABLE: &[Entry] = &{
             A::Space(O::LongerFalloff),
             "Longer falloff",
             "A soft push on captured motion reaches farther in time",
-            Some(alt(Key::CloseBracket)),
+            Some(ctrl_alt(Key::CloseBracket)),
             CLIP,
         ),
         entry(
@@ -556,7 +556,7 @@ pub const TABLE: &[Entry] = &{
             A::Space(O::Reach),
             "Show limit of the joint",
             "The cone that the chosen joint may point into, and how much of it is used",
-            Some(alt(Key::L)),
+            Some(alt(Key::R)),
             CLIP,
         )
         .switch(|now| now.space.shows_reach),

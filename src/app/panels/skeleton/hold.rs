@@ -28,29 +28,39 @@ fn pixel_of(at: Pos2, bounds: Rect, scale: f32) -> DVec2 {
     DVec2::new(from_corner.x.into(), from_corner.y.into())
 }
 
-/// Begins a drag where a press on the view itself met a rim.
-pub(super) fn take_hold(ui: &Ui, response: &egui::Response, bounds: Rect, scope: &mut Scope<'_>) {
+/// Begins a drag where a press on the view itself met a rim. The disc whose rim is under the pointer.
+pub(super) fn take_hold(
+    ui: &Ui,
+    response: &egui::Response,
+    bounds: Rect,
+    scope: &mut Scope<'_>,
+) -> Option<Disc> {
     let scale = ui.pixels_per_point();
     let rim_at = |scope: &Scope<'_>, at: Pos2| -> Option<Disc> {
         let figure = scope.pictures.figure.as_ref()?;
         let slack = f64::from(RIM_SLACK * scale);
-        let found =
-            figure.handles.as_ref()?.disc_under(&figure.scene.view(), pixel_of(at, bounds, scale), slack)?;
-        Some(found.disc)
+        let pixel = pixel_of(at, bounds, scale);
+        Some(figure.handles.as_ref()?.disc_under(&figure.scene.view(), pixel, slack)?.disc)
     };
-    let is_open = scope.pictures.grip.is_none() && scope.bench.session.space.shows_discs;
-    let over = response.hover_pos().filter(|_| is_open && !response.dragged());
-    scope.pictures.ready = Ready { disc: over.and_then(|at| rim_at(scope, at)), tip: false };
-    if scope.pictures.ready.disc.is_some() {
-        ui.ctx().set_cursor_icon(CursorIcon::Grab);
+    if scope.pictures.grip.is_some() || !is_shown(scope) {
+        return None;
     }
-    if !is_open || !response.drag_started_by(PointerButton::Primary) {
-        return;
-    }
-    let Some(origin) = ui.input(|input| input.pointer.press_origin()) else { return };
-    if let Some(disc) = rim_at(scope, origin) {
+    if response.drag_started_by(PointerButton::Primary) {
+        let origin = ui.input(|input| input.pointer.press_origin())?;
+        let disc = rim_at(scope, origin)?;
         begin(ui, Part::Disc(disc), origin, bounds, scope);
+        return None;
     }
+    let over = response.hover_pos().filter(|_| !response.dragged());
+    let disc = over.and_then(|at| rim_at(scope, at))?;
+    ui.ctx().set_cursor_icon(CursorIcon::Grab);
+    Some(disc)
+}
+
+/// Whether there are handles to be taken hold of.
+fn is_shown(scope: &Scope<'_>) -> bool {
+    let session = &scope.bench.session;
+    session.space.shows_discs && !session.playback.is_playing && !session.shows_source_alone()
 }
 
 fn begin(ui: &Ui, part: Part, origin: Pos2, bounds: Rect, scope: &mut Scope<'_>) {
@@ -110,27 +120,12 @@ pub(super) fn carry_on(ui: &Ui, scope: &mut Scope<'_>) {
     }
 }
 
-/// The grips: small areas of their own with names, which also take the keyboard. Whether the pointer is over one.
-pub(super) fn grips_ui(ui: &mut Ui, bounds: Rect, scope: &mut Scope<'_>) -> bool {
-    let scale = ui.pixels_per_point();
-    let Some(FigureView { scene, handles: Some(handles), .. }) = &scope.pictures.figure else { return false };
-    let is_held = scope.pictures.grip.is_some();
-    let shown = scope.bench.session.space.shows_discs && !scope.bench.session.playback.is_playing;
-    if !shown || scope.bench.session.shows_source_alone() {
-        return false;
-    }
-    let view = scene.view();
-    let place = |at| {
-        let pixel = view.project(at)?.pixel / f64::from(scale);
-        let at = bounds.min + Vec2::new(pixel.x as f32, pixel.y as f32);
-        bounds.contains(at).then_some(at)
-    };
-    let mut parts: Vec<(Part, Pos2)> = Vec::new();
-    parts.extend(handles.tip.as_ref().and_then(|tip| Some((Part::Tip, place(tip.at)?))));
-    let discs = handles.discs.iter();
-    parts.extend(discs.filter_map(|disc| Some((Part::Disc(disc.disc), place(disc.rim(disc.grip_rad))?))));
+/// The grips: small areas of their own with names, which also take the keyboard. `rim` is the disc whose rim is under the pointer.
+/// Whether the pointer is over a grip.
+pub(super) fn grips_ui(ui: &mut Ui, bounds: Rect, rim: Option<Disc>, scope: &mut Scope<'_>) -> bool {
+    let mut ready = Ready { disc: rim, tip: false };
     let mut is_over = false;
-    for (part, at) in parts {
+    for (part, at) in if is_shown(scope) { grips(ui, bounds, scope) } else { Vec::new() } {
         let label = match part {
             Part::Disc(disc) => format!("Turn disc {}", disc.name()),
             Part::Tip => "Limb tip".to_owned(),
@@ -141,26 +136,22 @@ pub(super) fn grips_ui(ui: &mut Ui, bounds: Rect, scope: &mut Scope<'_>) -> bool
         response.widget_info(|| WidgetInfo::labeled(Role::Button, true, &label));
         if response.has_focus() {
             ui.painter().circle_stroke(at, 11.0, (2.0, scope.look.selection));
+            if let Part::Disc(disc) = part {
+                turn_by_keys(ui, id, disc, scope);
+            }
         }
-        if response.has_focus()
-            && let Part::Disc(disc) = part
-        {
-            turn_by_keys(ui, id, disc, scope);
-        }
-        if is_held {
+        if scope.pictures.grip.is_some() {
             continue;
         }
-        if response.hovered() || response.has_focus() {
+        if response.hovered() || (response.has_focus() && ready == Ready::default()) {
             is_over |= response.hovered();
-            scope.pictures.ready = match part {
+            ready = match part {
                 Part::Disc(disc) => Ready { disc: Some(disc), tip: false },
                 Part::Tip => Ready { disc: None, tip: true },
             };
-            if response.hovered() {
-                ui.ctx().set_cursor_icon(CursorIcon::Grab);
-                // The picture shows it from the next frame on.
-                ui.ctx().request_repaint();
-            }
+        }
+        if response.hovered() {
+            ui.ctx().set_cursor_icon(CursorIcon::Grab);
         }
         if response.clicked()
             && let Part::Disc(disc) = part
@@ -174,7 +165,29 @@ pub(super) fn grips_ui(ui: &mut Ui, bounds: Rect, scope: &mut Scope<'_>) -> bool
         }
         response.on_hover_text(words(part));
     }
+    if ready != scope.pictures.ready {
+        // The picture shows it from the next frame on.
+        scope.pictures.ready = ready;
+        ui.ctx().request_repaint();
+    }
     is_over
+}
+
+/// What there is to take hold of, and where in the window.
+fn grips(ui: &Ui, bounds: Rect, scope: &Scope<'_>) -> Vec<(Part, Pos2)> {
+    let Some(FigureView { scene, handles: Some(handles), .. }) = &scope.pictures.figure else {
+        return Vec::new();
+    };
+    let scale = f64::from(ui.pixels_per_point());
+    let view = scene.view();
+    let place = |at| {
+        let pixel = view.project(at)?.pixel / scale;
+        let at = bounds.min + Vec2::new(pixel.x as f32, pixel.y as f32);
+        bounds.contains(at).then_some(at)
+    };
+    let tip = handles.tip.as_ref().map(|tip| (Part::Tip, tip.at));
+    let discs = handles.discs.iter().map(|disc| (Part::Disc(disc.disc), disc.rim(disc.grip_rad)));
+    tip.into_iter().chain(discs).filter_map(|(part, at)| Some((part, place(at)?))).collect()
 }
 
 fn words(part: Part) -> &'static str {

@@ -13,7 +13,7 @@ use glam::DVec2;
 use super::super::commands::{Action, Command};
 use super::super::pictures::{ClipKey, Pictures, SkeletonKey, on_pixels};
 use super::super::session::Fit;
-use super::super::view_models::{FigureRequest, Handling, figure_view, joint_bounds};
+use super::super::view_models::{FigureRequest, Handling, Trail, figure_view, joint_bounds};
 use super::super::widgets::{Icon, hint, icon_button, read_out, segment, strip};
 use super::Scope;
 use crate::clip::Clip;
@@ -57,14 +57,13 @@ pub(crate) fn skeleton_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     }
     let response = ui.allocate_rect(bounds, Sense::click_and_drag());
     response.widget_info(|| WidgetInfo::labeled(Role::Canvas, true, "Skeleton view"));
-    hold::take_hold(ui, &response, bounds, scope);
+    let rim = hold::take_hold(ui, &response, bounds, scope);
     hold::carry_on(ui, scope);
     let camera = camera_now(ui, &response, bounds, size_px, scope, [&source, &result]);
     show(ui, bounds, size_px, camera, scope, [&source, &result]);
-    let is_over_grip = hold::grips_ui(ui, bounds, scope);
-    let over_rim = scope.pictures.ready.disc.is_some();
+    let is_over_grip = hold::grips_ui(ui, bounds, rim, scope);
     if !is_over_grip && scope.pictures.grip.is_none() {
-        choose(ui, &response, bounds, scope, over_rim);
+        choose(ui, &response, bounds, scope, rim.is_some());
     }
     card::legend(ui, bounds, scope, !Arc::ptr_eq(&source, &result));
     let reach = scope.pictures.figure.as_ref().and_then(|figure| figure.reach.clone());
@@ -170,7 +169,7 @@ fn show(
     let time_secs = session.playback.playhead_secs;
     let Pictures { skeleton, figure, canvas, trails, hovered, .. } = &mut *scope.pictures;
     let texture = skeleton.show(ui.ctx(), "skeleton view", key, |_| {
-        let path_of = |trail: &mut crate::app::view_models::Trail, clip: &Arc<Clip>| {
+        let path_of = |trail: &mut Trail, clip: &Arc<Clip>| {
             joint.filter(|_| space.shows_path).map(|joint| trail.around(clip, joint, time_secs))
         };
         let differs = !Arc::ptr_eq(source, result);
@@ -178,8 +177,6 @@ fn show(
         let shows_source = alone || (differs && session.shows_before);
         let before = if shows_source { path_of(before, source) } else { None };
         let after = if alone { None } else { path_of(after, result) };
-        let slice = |trail: &'_ Option<(Vec<glam::DVec3>, usize)>| trail.clone();
-        let (before, after) = (slice(&before), slice(&after));
         let request = FigureRequest {
             size_px,
             scale: ui.pixels_per_point(),
