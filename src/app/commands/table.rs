@@ -433,7 +433,7 @@ pub const TABLE: &[Entry] = &{
             A::Space(O::TurnBack),
             "Turn back a step",
             "The chosen joint turns a step the negative way, with the disc chosen above",
-            Some(alt(Key::ArrowLeft)),
+            Some(ctrl_alt(Key::Num9)),
             TURNS,
         )
         .group(),
@@ -442,7 +442,7 @@ pub const TABLE: &[Entry] = &{
             A::Space(O::TurnOn),
             "Turn on a step",
             "The chosen joint turns a step the positive way, with the disc chosen above",
-            Some(alt(Key::ArrowRight)),
+            Some(ctrl_alt(Key::Num0)),
             TURNS,
         ),
         entry(
@@ -565,7 +565,7 @@ pub const TABLE: &[Entry] = &{
             A::Space(O::Names),
             "Show joint names",
             "A name at each joint, as far as there is room",
-            Some(alt(Key::J)),
+            Some(alt(Key::K)),
             CLIP,
         )
         .switch(|now| now.space.shows_names),
