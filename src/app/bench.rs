@@ -236,9 +236,6 @@ impl<K> FromClips<K, ()> {
     }
 }
 
-/// The way of a joint's tip through space: a point for each frame.
-pub type Path3 = Vec<glam::DVec3>;
-
 /// Everything that panels read.
 #[derive(Debug, Default)]
 pub struct Bench {
@@ -258,8 +255,6 @@ pub struct Bench {
     pub more_curves: Vec<FromClips<CurveKey, Arc<CurveSet>>>,
     /// What is being done to the curves by hand.
     pub curve_hand: CurveHand,
-    /// The way of the chosen joint's tip.
-    pub tip_path: Option<FromClips<usize, Arc<Path3>>>,
     /// What is known of the blend that is looked at.
     pub blend: Option<BlendWork>,
     /// The retarget that is looked at, made ready.
@@ -502,6 +497,8 @@ impl Bench {
             has_blend: self.shown_blend().is_some(),
             shows_blend_lane: session.blend.shows_lane,
             shows_blend_clips: session.blend.shows_clips,
+            space: session.space.clone(),
+            is_mirrored: session.camera.is_mirrored,
         }
     }
 }

@@ -23,8 +23,6 @@ pub enum Slot {
     Heat,
     /// The rotation curves.
     Curves,
-    /// The way of the chosen joint through space.
-    TipPath,
     /// Writing the scene.
     Save,
     /// Writing clips.
@@ -49,7 +47,6 @@ impl Slot {
             Self::Limits => "Working out limits",
             Self::Heat => "Drawing the turn map",
             Self::Curves => "Sampling curves",
-            Self::TipPath => "Following the tip",
             Self::Save => "Saving",
             Self::Export => "Exporting",
             Self::Blend => "Comparing clips",
@@ -60,10 +57,7 @@ impl Slot {
 
     /// Short work that the eye waits for must not stand behind long work.
     const fn is_quick(self) -> bool {
-        matches!(
-            self,
-            Self::Evaluate | Self::Curves | Self::TipPath | Self::Save | Self::Blend | Self::Carry
-        )
+        matches!(self, Self::Evaluate | Self::Curves | Self::Save | Self::Blend | Self::Carry)
     }
 }
 

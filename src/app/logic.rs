@@ -11,6 +11,7 @@ mod orders;
 mod passes;
 mod playing;
 mod snags;
+mod space;
 mod time;
 
 use egui::Context;
@@ -106,6 +107,7 @@ impl Window {
             Command::Time(command) => self.run_time(command),
             Command::Blend(command) => self.run_blend(command),
             Command::Carry(command) => self.run_carry(command),
+            Command::Space(command) => self.run_space(command),
         }
     }
 
@@ -214,6 +216,7 @@ impl Window {
             A::BlendLane => self.bench.session.blend.shows_lane ^= true,
             A::BlendClips => self.bench.session.blend.shows_clips ^= true,
             A::Retarget => self.retarget(),
+            A::Space(action) => self.act_in_space(action),
         }
     }
 

@@ -6,11 +6,16 @@ use std::sync::Arc;
 use egui::{ColorImage, Context, Rect, TextureHandle, TextureOptions, pos2};
 
 use crate::clip::Clip;
+use crate::limit::JointLimit;
 use crate::raster::{Camera, Canvas, SceneView, render_into};
-use crate::skeleton::LocalPose;
+use crate::skeleton::roles::Roles;
+use crate::skeleton::{LocalPose, Skeleton};
 
 use super::panels::{CurvePress, DistanceKey};
-use super::view_models::{CarryEye, FaintFigure, HeatMap, MapRow, Memo, Stage, TimeWindow};
+use super::session::{Disc, SpaceHabits};
+use super::view_models::{
+    CarryEye, Drag, FaintFigure, FigureView, HandTurns, HeatMap, MapRow, Memo, Stage, Swept, TimeWindow, Trail,
+};
 
 /// A texture and the key of what is on it.
 pub(crate) struct Picture<K> {
@@ -63,16 +68,46 @@ pub(crate) struct SkeletonKey {
     pub camera: Camera,
     /// When, in bits: equal or not is all that counts.
     pub time_bits: u64,
-    /// Addresses of source, result and tip path, which stay in memory while the picture is of them.
-    pub data: [usize; 3],
+    /// Source and result.
+    pub clips: [ClipKey; 2],
     /// Faint figures.
     pub faint: Vec<FaintFigure>,
     /// Chosen joint and joint under the pointer.
     pub joints: [Option<usize>; 2],
-    /// Dark, source as well, source alone, following.
-    pub switches: [bool; 4],
+    /// Dark, source as well, source alone, following, with handles, one of them held.
+    pub switches: [bool; 6],
+    /// How the view is set.
+    pub space: SpaceHabits,
+    /// What can be taken hold of.
+    pub ready: Ready,
+    /// What is being turned.
+    pub swept: Option<Swept>,
+    /// The limit of the chosen joint.
+    pub limit: Option<JointLimit>,
     /// Pixels per point.
     pub scale: f32,
+}
+
+/// What the pointer, or the keyboard, could take hold of.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub(crate) struct Ready {
+    /// A disc.
+    pub disc: Option<Disc>,
+    /// The tip of the limb.
+    pub tip: bool,
+}
+
+/// A handle that is held.
+#[derive(Clone, Debug)]
+pub(crate) struct Grip {
+    /// What the way of the pointer comes to.
+    pub drag: Drag,
+    /// Where the pointer was last.
+    pub pointer: egui::Pos2,
+    /// The steps that it snaps to.
+    pub snap_rad: Option<f64>,
+    /// The turns that are shown.
+    pub shown: Option<HandTurns>,
 }
 
 /// What the picture of the turn map hangs on.
@@ -151,13 +186,21 @@ pub(crate) struct Pictures {
     /// The skeleton view.
     pub skeleton: Picture<SkeletonKey>,
     /// What was drawn there last: for choosing a limb with the pointer.
-    pub figure: Option<SceneView>,
     /// The two figures of the retarget sheet.
     pub carry: [Picture<CarryPictureKey>; 2],
     /// What was drawn there last.
     pub carry_views: [Option<SceneView>; 2],
     /// The joint of source and target under the pointer there.
     pub carry_hovered: [Option<usize>; 2],
+    pub figure: Option<FigureView>,
+    /// The handle that is held.
+    pub grip: Option<Grip>,
+    /// What could be taken hold of.
+    pub ready: Ready,
+    /// The way of the chosen joint's tip in the source and in the result.
+    pub trails: [Trail; 2],
+    /// Which joint plays which part.
+    pub roles: Memo<SkeletonOf, Arc<Roles>>,
     /// The turn map.
     pub map: Picture<MapKey>,
     /// Its rows.
@@ -194,7 +237,23 @@ impl PartialEq for ClipKey {
     }
 }
 
+/// A skeleton by its identity.
+#[derive(Clone, Debug)]
+pub(crate) struct SkeletonOf(pub Arc<Skeleton>);
+
+impl PartialEq for SkeletonOf {
+    fn eq(&self, other: &Self) -> bool {
+        Arc::ptr_eq(&self.0, &other.0)
+    }
+}
+
 impl Pictures {
+    /// Which joint plays which part.
+    pub(crate) fn roles(&mut self, skeleton: &Arc<Skeleton>) -> Arc<Roles> {
+        let key = SkeletonOf(Arc::clone(skeleton));
+        Arc::clone(self.roles.get_or_compute(key, |key| Arc::new(Roles::find(&key.0))))
+    }
+
     /// Floor and travel of a clip.
     pub(crate) fn stage(&mut self, clip: &Arc<Clip>) -> Arc<Stage> {
         Arc::clone(self.stage.get_or_compute(ClipKey(Arc::clone(clip)), |key| Arc::new(Stage::new(&key.0))))

@@ -8,6 +8,10 @@ use crate::clip::Clip;
 use crate::raster::Camera;
 use crate::scene::{PassId, SnagMark};
 
+mod space;
+
+pub use space::{Disc, FALLOFF_SECS, SpaceHabits, TurnPlanes, USUAL_FALLOFF_SECS, other_falloff};
+
 use super::blend_state::BlendHabits;
 use super::carry_state::CarryHabits;
 use super::view_models::{CurveView, HeatKind, SnagFilter, SnagOrder, TimeChoice, TimeWindow};
@@ -79,6 +83,8 @@ pub enum Fit {
     Arrive,
     /// It was asked for.
     Again,
+    /// It was asked for the chosen joint alone.
+    Joint,
 }
 
 /// What is looked at, and how.
@@ -110,6 +116,11 @@ pub struct Session {
     pub heat_kind: HeatKind,
     /// Whether its hottest row is on top.
     pub worst_first: bool,
+    /// How the skeleton view is set.
+    pub space: SpaceHabits,
+    /// Seconds from a soft push to where nothing is left of it, to either side. One number for all that push: the discs of
+    /// the skeleton view and the curves.
+    pub falloff_secs: f64,
     /// From where the figure is seen.
     pub camera: Camera,
     /// What the camera is to be fitted to, once the size of the view is known.
@@ -153,6 +164,8 @@ impl Default for Session {
             falloff_secs: 0.4,
             heat_kind: HeatKind::TurnRate,
             worst_first: false,
+            space: SpaceHabits::default(),
+            falloff_secs: USUAL_FALLOFF_SECS,
             camera: Camera::default(),
             fit: Some(Fit::Arrive),
             follows: true,
@@ -203,7 +216,13 @@ impl Session {
             falloff_secs: self.falloff_secs,
             heat_kind: self.heat_kind,
             worst_first: self.worst_first,
-            camera: Camera { lens: self.camera.lens, ..Camera::default() },
+            space: self.space.clone(),
+            falloff_secs: self.falloff_secs,
+            camera: Camera {
+                lens: self.camera.lens,
+                is_mirrored: self.camera.is_mirrored,
+                ..Camera::default()
+            },
             shows_before: self.shows_before,
             order: self.order,
             looks: self.looks,

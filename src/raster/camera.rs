@@ -94,6 +94,8 @@ pub struct Camera {
     pub fov_rad: f64,
     /// How depth shows.
     pub lens: Lens,
+    /// Whether left and right are exchanged in the picture, as in a mirror.
+    pub is_mirrored: bool,
 }
 
 impl Default for Camera {
@@ -106,6 +108,7 @@ impl Default for Camera {
             pitch_rad: 0.22,
             fov_rad: 0.6,
             lens: Lens::Perspective,
+            is_mirrored: false,
         }
     }
 }
@@ -113,8 +116,9 @@ impl Default for Camera {
 impl Camera {
     const DISTANCES: [f64; 2] = [1e-6, 1e9];
 
-    /// Turns around the target. Pitch stops straight above and below.
+    /// Turns around the target: a positive yaw brings the right side of the picture nearer. Pitch stops straight above and below.
     pub fn orbit(&mut self, yaw_change_rad: f64, pitch_change_rad: f64) {
+        let yaw_change_rad = if self.is_mirrored { -yaw_change_rad } else { yaw_change_rad };
         self.yaw_rad = (self.yaw_rad + yaw_change_rad).rem_euclid(TAU);
         self.pitch_rad = (self.pitch_rad + pitch_change_rad).clamp(-FRAC_PI_2, FRAC_PI_2);
     }
@@ -184,7 +188,7 @@ impl Camera {
         let back = DVec3::new(yaw_sin * pitch_cos, pitch_sin, yaw_cos * pitch_cos);
         let distance = self.distance.clamp(Self::DISTANCES[0], Self::DISTANCES[1]);
         View {
-            right,
+            right: if self.is_mirrored { -right } else { right },
             up: back.cross(right),
             back,
             eye: self.target + back * distance,
@@ -201,7 +205,7 @@ impl Camera {
 /// Pixels count from the top left corner of the picture; the middle of the first pixel is (0.5, 0.5).
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct View {
-    /// Unit, world: to the right of the picture.
+    /// Unit, world: to the right of the picture. In a mirrored view the three axes are left-handed.
     pub right: DVec3,
     /// Unit, world: to the top of the picture.
     pub up: DVec3,
@@ -382,6 +386,26 @@ mod tests {
             let seen = view.project(point).unwrap();
             check_close(view.unproject(seen.pixel, seen.depth), point);
             check_close(view.ray(seen.pixel).nearest_to(point), point);
+        }
+    }
+
+    #[test]
+    fn a_mirrored_view_exchanges_left_and_right_and_nothing_else() {
+        for camera in cameras() {
+            let mirrored = Camera { is_mirrored: true, ..camera };
+            let (view, other) = (camera.view(300, 200), mirrored.view(300, 200));
+            let point = camera.target + DVec3::new(0.3, -0.4, 0.2);
+            let (seen, seen_other) = (view.project(point).unwrap(), other.project(point).unwrap());
+            assert!((seen.pixel.x + seen_other.pixel.x - 300.0).abs() < 1e-9);
+            assert!((seen.pixel.y - seen_other.pixel.y).abs() < 1e-9);
+            assert!((seen.depth - seen_other.depth).abs() < 1e-12);
+            check_close(other.ray(seen_other.pixel).nearest_to(point), point);
+            // What is dragged follows the pointer in both: a pan keeps the point under it, an orbit moves it to the same side.
+            let moved = |mut camera: Camera| {
+                camera.pan(12.0, 0.0, 300, 200);
+                camera.view(300, 200).project(point).unwrap().pixel.x
+            };
+            assert!(moved(camera) > seen.pixel.x && moved(mirrored) > seen_other.pixel.x);
         }
     }
 

@@ -30,6 +30,34 @@ pub struct PlaneDisc {
     pub name: String,
     /// What is written in the turned part: the angle.
     pub angle_text: String,
+    /// What it is doing.
+    pub state: DiscState,
+}
+
+/// What a disc is doing, and with it how much of it is drawn.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum DiscState {
+    /// It waits: a thin rim, paler where it goes behind the joint.
+    Idle,
+    /// The pointer is over it, or keys turn it: a firm rim and a pale face.
+    Ready,
+    /// It is turned: the sector it has swept, and the angle.
+    Held,
+}
+
+/// A grip: a round dot with letters beside it, by which something is taken hold of.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Knob {
+    /// Where, world.
+    pub at: DVec3,
+    /// Ink.
+    pub color: Color,
+    /// Larger, with a ring.
+    pub is_ready: bool,
+    /// What is written beside it; may be empty.
+    pub letters: String,
+    /// The middle of what it belongs to, world: letters stand on the other side of the dot.
+    pub away_from: DVec3,
 }
 
 impl PlaneDisc {
@@ -65,6 +93,8 @@ pub struct ReachCone {
     pub apex: DVec3,
     /// Closed rim in order, world.
     pub rim: Vec<DVec3>,
+    /// Where the limb points now, as far out as the rim; world.
+    pub now: Option<DVec3>,
     /// Ink.
     pub color: Color,
 }
@@ -74,6 +104,10 @@ pub(super) fn draw_disc(canvas: &mut Canvas, view: &View, disc: &PlaneDisc, them
     let faint = Hidden::Faint(0.45);
     let line = Stroke { color: disc.color, width: 1.5 * scale, dash: None, hidden: faint };
     let rim: Vec<DVec3> = (0..=72).map(|i| disc.rim(TAU * f64::from(i) / 72.0)).collect();
+    if disc.state != DiscState::Held {
+        draw_waiting(canvas, view, disc, &rim, &line);
+        return;
+    }
     canvas.polygon(view, &rim[..72], disc.color.with_alpha(0.10), faint);
     canvas.polyline(view, &rim, &line);
 
@@ -107,8 +141,56 @@ pub(super) fn draw_disc(canvas: &mut Canvas, view: &View, disc: &PlaneDisc, them
     }
 }
 
+/// The rim of a disc that nobody turns: its nearer half firm, the half behind the joint pale, so that it reads as a ring in space.
+fn draw_waiting(canvas: &mut Canvas, view: &View, disc: &PlaneDisc, rim: &[DVec3], line: &Stroke) {
+    let is_ready = disc.state == DiscState::Ready;
+    if is_ready {
+        canvas.polygon(view, &rim[..72], disc.color.with_alpha(0.12), Hidden::Faint(0.45));
+    }
+    let nearness = |point: DVec3| (point - disc.center).dot(view.back);
+    // A ring that faces the eye has no far half.
+    let level = 1e-6 * disc.radius;
+    let is_behind = |pair: &[DVec3]| nearness(pair[0].midpoint(pair[1])) < -level;
+    let behind = Stroke { color: line.color.with_alpha(if is_ready { 0.5 } else { 0.28 }), ..*line };
+    let before = Stroke {
+        color: line.color.with_alpha(if is_ready { 1.0 } else { 0.85 }),
+        width: line.width * if is_ready { 1.6 } else { 1.0 },
+        ..*line
+    };
+    let pieces: Vec<&[DVec3]> = rim.windows(2).collect();
+    for run in pieces.chunk_by(|a, b| is_behind(a) == is_behind(b)) {
+        let points: Vec<DVec3> =
+            run.iter().map(|piece| piece[0]).chain(run.last().map(|piece| piece[1])).collect();
+        canvas.polyline(view, &points, if is_behind(run[0]) { &behind } else { &before });
+    }
+}
+
+/// Draws a grip over everything.
+pub(super) fn draw_knob(canvas: &mut Canvas, view: &View, knob: &Knob, theme: &Theme, scale: f32) {
+    let Some(spot) = Spot::of(view, knob.at) else { return };
+    let radius = if knob.is_ready { 6.5 } else { 5.0 } * scale;
+    canvas.flat_dot(spot.pixel, radius + 1.5 * scale, theme.background.with_alpha(0.75));
+    canvas.flat_dot(spot.pixel, radius, knob.color);
+    if knob.is_ready {
+        canvas.flat_ring(spot.pixel, radius + 2.5 * scale, 1.5 * scale, theme.text);
+    }
+    if knob.letters.is_empty() {
+        return;
+    }
+    let middle = Spot::of(view, knob.away_from).map_or(spot.pixel, |middle| middle.pixel);
+    let away = (spot.pixel - middle).normalize_or(Vec2::NEG_Y);
+    let style = TextStyle::words(12.5 * scale, theme.text).aligned(Align::Center);
+    let half = Vec2::new(text_width(&knob.letters, &style) / 2.0, 6.0 * scale);
+    let at = spot.pixel + away * (radius + 4.0 * scale + half.dot(away.abs()));
+    let shade = TextStyle { color: theme.background.with_alpha(0.8), ..style };
+    for (x, y) in [(-1.0, 0.0), (1.0, 0.0), (0.0, -1.0), (0.0, 1.0)] {
+        draw_text_centered(&mut canvas.image, &knob.letters, at + Vec2::new(x, y) * scale, &shade);
+    }
+    draw_text_centered(&mut canvas.image, &knob.letters, at, &style);
+}
+
 /// Draws a reach: a pale cone with a firm rim.
-pub(super) fn draw_reach(canvas: &mut Canvas, view: &View, reach: &ReachCone, scale: f32) {
+pub(super) fn draw_reach(canvas: &mut Canvas, view: &View, reach: &ReachCone, theme: &Theme, scale: f32) {
     let Some(&first) = reach.rim.first() else { return };
     let hidden = Hidden::Faint(0.35);
     let closed: Vec<DVec3> = reach.rim.iter().copied().chain(std::iter::once(first)).collect();
@@ -125,6 +207,17 @@ pub(super) fn draw_reach(canvas: &mut Canvas, view: &View, reach: &ReachCone, sc
             &Stroke { color: reach.color.with_alpha(0.5), width: scale, ..line },
         );
     }
+    if let Some(now) = reach.now {
+        draw_now(canvas, view, reach, now, theme, scale);
+    }
+}
+
+/// Where the limb points, among all that it may: a ray with a dot, over everything.
+fn draw_now(canvas: &mut Canvas, view: &View, reach: &ReachCone, now: DVec3, theme: &Theme, scale: f32) {
+    let line = Stroke { color: reach.color, width: 1.5 * scale, dash: None, hidden: Hidden::Shown };
+    canvas.line(view, reach.apex, now, &line);
+    canvas.dot(view, now, 4.5 * scale, theme.background, Hidden::Shown);
+    canvas.dot(view, now, 3.2 * scale, reach.color, Hidden::Shown);
 }
 
 /// Writes a short text on a plate that keeps it legible over anything, centred at `at` and kept inside the picture.
@@ -166,6 +259,7 @@ mod tests {
             color: Color::rgb(0),
             name: String::new(),
             angle_text: String::new(),
+            state: DiscState::Held,
         };
         for angle in [-3.0, -1.2, 0.0, 0.4, 2.9] {
             let pixel = view.project(disc.rim(angle)).unwrap().pixel;

@@ -160,7 +160,13 @@ impl Figure {
     /// The joint whose limb is under `pixel`: the nearest to the eye of those hit, else the closest within
     /// `slack_px` pixels.
     pub fn pick(&self, view: &View, pixel: DVec2, slack_px: f32) -> Option<usize> {
-        let mut hit: Option<(f32, usize)> = None;
+        self.pick_all(view, pixel, slack_px).first().copied()
+    }
+
+    /// All joints whose limbs are under `pixel`, the nearest to the eye first; where none is hit, the closest within `slack_px`
+    /// pixels. Each joint once.
+    pub fn pick_all(&self, view: &View, pixel: DVec2, slack_px: f32) -> Vec<usize> {
+        let mut hits: Vec<(f32, usize)> = Vec::new();
         let mut beside: Option<(f32, usize)> = None;
         for limb in &self.limbs {
             let Some(cone) = solid_cone(view, limb, self.girth, 1.0, 1.0) else { continue };
@@ -168,14 +174,22 @@ impl Figure {
             let key = cone.key_a + (cone.key_b - cone.key_a) * sample.t;
             if sample.distance <= 0.0 {
                 let surface = key + cone.bulge_a + (cone.bulge_b - cone.bulge_a) * sample.t;
-                if hit.is_none_or(|(nearest, _)| surface > nearest) {
-                    hit = Some((surface, limb.joint));
-                }
+                hits.push((surface, limb.joint));
             } else if sample.distance <= slack_px && beside.is_none_or(|(least, _)| sample.distance < least) {
                 beside = Some((sample.distance, limb.joint));
             }
         }
-        hit.or(beside).map(|(_, joint)| joint)
+        if hits.is_empty() {
+            return beside.into_iter().map(|(_, joint)| joint).collect();
+        }
+        hits.sort_by(|a, b| b.0.total_cmp(&a.0));
+        let mut joints: Vec<usize> = Vec::new();
+        for (_, joint) in hits {
+            if !joints.contains(&joint) {
+                joints.push(joint);
+            }
+        }
+        joints
     }
 }
 
@@ -257,7 +271,7 @@ fn limb_style(figure: &Figure, limb: &FigureLimb, theme: &Theme, scale: f32) -> 
     let is_solid = figure.style == FigureStyle::After;
     SolidStyle {
         color,
-        mark: (is_solid && !is_plain).then(|| color.mix(Color::rgb(0), 0.45)),
+        has_mark: is_solid && !is_plain,
         ring: is_chosen.then_some((1.25 * scale, theme.text)),
         halo: if is_solid { 3.0 * scale } else { 0.5 },
     }
@@ -378,5 +392,6 @@ mod tests {
             joint: 9,
         });
         assert_eq!(figure.pick(&view, pixel_of(DVec3::new(0.5, 0.0, 0.0)), 0.0), Some(9));
+        assert_eq!(figure.pick_all(&view, pixel_of(DVec3::new(0.5, 0.0, 0.0)), 0.0), [9, 0]);
     }
 }

@@ -7,6 +7,7 @@ use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke};
 use crate::raster::figure::{Figure, solid_cone};
 use crate::raster::image::{mix_pixel, to_byte};
 use crate::raster::palette::Theme;
+use crate::rotor::batch::Level;
 
 /// A square grid on a level floor.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -145,15 +146,28 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
             let soft = (cone.shape.radius_a.max(cone.shape.radius_b) * blur).max(1.0);
             let frame = cone.shape.frame();
             let inverse = 0.5 / soft;
-            cone.shape.rows(&frame, width, height, soft, |row, columns, first| {
-                touched = (touched.0.min(row), touched.1.max(row + 1));
-                let span = row * width + columns.start..row * width + columns.end;
-                for (i, dark) in mask[span].iter_mut().enumerate() {
-                    let distance = frame.sample(Vec2::new(first.x + i as f32, first.y)).distance;
-                    let inside = (0.5 - distance * inverse).clamp(0.0, 1.0);
-                    *dark = (*dark).max(to_byte(darkness * inside * inside * (3.0 - 2.0 * inside)) as u8);
-                }
-            });
+            Level::best().run(
+                #[inline(always)]
+                || {
+                    cone.shape.rows(
+                        &frame,
+                        width,
+                        height,
+                        soft,
+                        #[inline(always)]
+                        |row, columns, first| {
+                            touched = (touched.0.min(row), touched.1.max(row + 1));
+                            let span = row * width + columns.start..row * width + columns.end;
+                            for (i, dark) in mask[span].iter_mut().enumerate() {
+                                let at = Vec2::new(first.x + i as f32, first.y);
+                                let inside = (0.5 - frame.sample(at).distance * inverse).clamp(0.0, 1.0);
+                                let shade = darkness * inside * inside * (3.0 - 2.0 * inside);
+                                *dark = (*dark).max(to_byte(shade) as u8);
+                            }
+                        },
+                    );
+                },
+            );
         }
     }
     if touched.0 < touched.1 {

@@ -1,4 +1,8 @@
 //! A limb in the picture: its shape, light, flat mark and the dark edge it lays on what stands behind it.
+#![expect(
+    clippy::inline_always,
+    reason = "what stays a function of its own is not built with wide instructions"
+)]
 
 use glam::Vec2;
 
@@ -6,6 +10,7 @@ use crate::raster::canvas::{Canvas, FAR};
 use crate::raster::image::{mix_pixel, to_byte};
 use crate::raster::palette::Color;
 use crate::raster::shape::{ConeFrame, RoundCone};
+use crate::rotor::batch::Level;
 
 /// A limb in the picture: a round cone with depth.
 #[derive(Clone, Copy, Debug)]
@@ -22,8 +27,8 @@ pub(super) struct SolidCone {
 #[derive(Clone, Copy, Debug)]
 pub(super) struct SolidStyle {
     pub(super) color: Color,
-    /// Colour of the flat mark near end `b`; none for balls.
-    pub(super) mark: Option<Color>,
+    /// Whether it has a flat, darker mark near end `b`; balls have none.
+    pub(super) has_mark: bool,
     /// A ring of this width (pixels) and colour just inside the outline.
     pub(super) ring: Option<(f32, Color)>,
     /// Width of the dark edge laid on what stands well behind the limb, pixels.
@@ -52,31 +57,53 @@ const LANES: usize = 8;
 /// Light from the upper left, a little before the figure; x right, y down, z to the viewer. Unit length.
 const LIGHT: [f32; 3] = [-0.40, -0.62, 0.675];
 
-/// A limb's surface, ready for its pixels.
+/// How dark the edge is that a limb lays on what stands well behind it.
+const HALO: f32 = 130.0 / 255.0;
+
+/// How much darker the flat mark is than the limb.
+const MARK: f32 = 0.45;
+
+/// A limb's surface and looks, ready for its pixels.
 struct Surface {
     frame: ConeFrame,
     key: [f32; 2],
     bulge: [f32; 2],
     /// The light along the limb's axis, across it and towards the viewer.
     light: [f32; 3],
+    /// Red, green, blue.
+    color: [f32; 3],
+    halo: f32,
+    /// Middle and half width of the flat mark along the axis, pixels; far away where there is none.
+    mark: [f32; 2],
+    ring: Option<(f32, Color)>,
+}
+
+/// Where [`LANES`] neighbouring pixels lie on a limb.
+struct Places {
+    /// To the outline, pixels; negative inside.
+    distance: [f32; LANES],
+    /// Along the axis, 0 to 1.
+    t: [f32; LANES],
+    /// From there to the pixel along the axis and across it, pixels.
+    out: [[f32; LANES]; 2],
+    /// One over the radius there, or over the distance from the axis where that is longer.
+    inverse: [f32; LANES],
 }
 
 /// What [`LANES`] neighbouring pixels see of a limb.
 struct Lanes {
-    /// Covered share, 0..=255.
-    alpha: [u32; LANES],
-    /// Brightness, an index into [`Tones`].
-    tone: [u32; LANES],
+    /// To the outline, pixels; negative inside.
+    distance: [f32; LANES],
     /// Depth of the surface.
     key: [f32; LANES],
     /// Depth behind which something counts as well behind the limb.
     behind: [f32; LANES],
-    /// To the outline, pixels; negative inside.
-    distance: [f32; LANES],
+    /// Brightness.
+    tone: [f32; LANES],
 }
 
 impl Surface {
-    fn new(cone: &SolidCone, frame: ConeFrame) -> Self {
+    fn new(cone: &SolidCone, style: &SolidStyle, frame: ConeFrame) -> Self {
         let axis = frame.axis();
         let along = LIGHT[0] * axis.x + LIGHT[1] * axis.y;
         let across = LIGHT[1] * axis.x - LIGHT[0] * axis.y;
@@ -85,77 +112,148 @@ impl Surface {
             key: [cone.key_a, cone.key_b - cone.key_a],
             bulge: [cone.bulge_a, cone.bulge_b - cone.bulge_a],
             light: [along, across, LIGHT[2]],
+            color: [style.color.r, style.color.g, style.color.b].map(f32::from),
+            halo: style.halo.max(0.5),
+            mark: if style.has_mark { mark_of(cone) } else { None }.unwrap_or([-1e9, 0.0]),
+            ring: style.ring,
         }
     }
 
-    #[inline]
-    fn lanes(&self, start: Vec2) -> Lanes {
-        let mut lanes = Lanes {
-            alpha: [0; LANES],
-            tone: [0; LANES],
-            key: [0.0; LANES],
-            behind: [0.0; LANES],
-            distance: [0.0; LANES],
-        };
+    #[inline(always)]
+    fn places(&self, start: Vec2) -> Places {
+        let zero = [0.0; LANES];
+        let mut places = Places { distance: zero, t: zero, out: [zero; 2], inverse: zero };
         for lane in 0..LANES {
             let sample = self.frame.sample(Vec2::new(start.x + lane as f32, start.y));
+            places.distance[lane] = sample.distance;
+            places.t[lane] = sample.t;
+            places.out[0][lane] = sample.out.x;
+            places.out[1][lane] = sample.out.y;
             // On the rim a pixel's middle may lie outside: its normal is then held to unit length.
-            let inverse = 1.0 / sample.radius.max(sample.out_length).max(0.25);
-            let (along, across) = (sample.out.x * inverse, sample.out.y * inverse);
+            places.inverse[lane] = 1.0 / sample.radius.max(sample.out_length).max(0.25);
+        }
+        places
+    }
+
+    #[inline(always)]
+    fn lanes(&self, start: Vec2, places: &Places) -> Lanes {
+        let zero = [0.0; LANES];
+        let mut lanes = Lanes { distance: places.distance, key: zero, behind: zero, tone: zero };
+        for lane in 0..LANES {
+            let inverse = places.inverse[lane];
+            let (along, across) = (places.out[0][lane] * inverse, places.out[1][lane] * inverse);
             let z = (1.0 - along * along - across * across).max(0.0).sqrt();
             let toward = along * self.light[0] + across * self.light[1] + z * self.light[2];
-            let axis_key = self.key[0] + self.key[1] * sample.t;
-            let bulge = self.bulge[0] + self.bulge[1] * sample.t;
-            lanes.distance[lane] = sample.distance;
+            let axis_key = self.key[0] + self.key[1] * places.t[lane];
+            let bulge = self.bulge[0] + self.bulge[1] * places.t[lane];
             lanes.key[lane] = axis_key + bulge * z;
             lanes.behind[lane] = axis_key - 2.0 * bulge;
-            lanes.alpha[lane] = to_byte((0.5 - sample.distance).clamp(0.0, 1.0) * 255.0);
             // Wrapped diffuse light keeps the shaded side legible; the z term darkens every outline a little, which
             // is what separates two crossing limbs of one colour.
-            let factor = 0.26 + 0.62 * (0.5 + 0.5 * toward) + 0.22 * z;
-            lanes.tone[lane] = to_byte((factor * TONES_AT_ONE).clamp(0.0, 255.0));
+            let tone = 0.26 + 0.62 * (0.5 + 0.5 * toward) + 0.22 * z;
+            let from_mark =
+                (self.frame.along(Vec2::new(start.x + lane as f32, start.y)) - self.mark[0]).abs();
+            let marked = (self.mark[1] + 0.5 - from_mark).clamp(0.0, 1.0);
+            lanes.tone[lane] = tone.max(0.0) * (1.0 - MARK * marked);
         }
         lanes
     }
-}
 
-/// The tone that stands for a brightness of 1.
-const TONES_AT_ONE: f32 = 225.0;
-
-/// A colour at 256 brightnesses, opaque.
-struct Tones([[u8; 4]; 256]);
-
-impl Tones {
-    fn new(color: Color) -> Self {
-        let scale = |channel: u8, tone: usize| {
-            (f32::from(channel) * tone as f32 * (1.0 / TONES_AT_ONE) + 0.5).min(255.0) as u8
-        };
-        Self(std::array::from_fn(|tone| {
-            [scale(color.r, tone), scale(color.g, tone), scale(color.b, tone), 255]
-        }))
+    /// Draws a chunk of pixels that lie well inside: most do.
+    #[inline(always)]
+    fn draw_inside(&self, lanes: &Lanes, pixels: &mut [[u8; 4]; LANES], depths: &mut [f32; LANES]) {
+        let mut olds = [0_u32; LANES];
+        for lane in 0..LANES {
+            olds[lane] = u32::from_le_bytes(pixels[lane]);
+        }
+        for lane in 0..LANES {
+            let channel = |value: f32| to_byte((value * lanes.tone[lane]).min(255.0));
+            let [r, g, b] = self.color.map(channel);
+            let ink = r | g << 8 | b << 16 | 0xFF00_0000;
+            let nearer = u32::from(lanes.key[lane] > depths[lane]).wrapping_neg();
+            olds[lane] = (ink & nearer) | (olds[lane] & !nearer);
+            depths[lane] = depths[lane].max(lanes.key[lane]);
+        }
+        for lane in 0..LANES {
+            pixels[lane] = olds[lane].to_le_bytes();
+        }
     }
 
-    #[inline]
-    fn at(&self, tone: u32) -> [u8; 4] {
-        self.0[(tone & 0xFF) as usize]
+    /// Draws a chunk of pixels at the rim: beside the limb and under its soft rim what stands well behind it gets darker.
+    #[inline(always)]
+    fn draw_rim(&self, lanes: &Lanes, pixels: &mut [[u8; 4]; LANES], depths: &mut [f32; LANES]) {
+        let inverse_halo = 1.0 / self.halo;
+        let mut inks = [0_u32; LANES];
+        for lane in 0..LANES {
+            let alpha = (0.5 - lanes.distance[lane]).clamp(0.0, 1.0);
+            let standing = depths[lane];
+            let near = ((self.halo - lanes.distance[lane]) * inverse_halo).clamp(0.0, 1.0);
+            let is_shaded = alpha < 1.0 && standing > FAR && standing < lanes.behind[lane];
+            let left = if is_shaded { 1.0 - near * HALO } else { 1.0 };
+            let share = if lanes.key[lane] > standing { alpha } else { 0.0 };
+            let old = u32::from_le_bytes(pixels[lane]);
+            let channel = |shift: u32, color: f32| {
+                let under = ((old >> shift) & 0xFF) as f32 * left;
+                let over = (color * lanes.tone[lane]).min(255.0);
+                to_byte(under + (over - under) * share) << shift
+            };
+            let [r, g, b] = self.color;
+            let opacity = (old >> 24) as f32;
+            let opacity = to_byte(opacity + (255.0 - opacity) * share) << 24;
+            inks[lane] = channel(0, r) | channel(8, g) | channel(16, b) | opacity;
+        }
+        for lane in 0..LANES {
+            pixels[lane] = inks[lane].to_le_bytes();
+            let covers = lanes.distance[lane] <= 0.0 && lanes.key[lane] > depths[lane];
+            depths[lane] = if covers { lanes.key[lane] } else { depths[lane] };
+        }
+    }
+
+    /// Lays the ring of a chosen limb over pixels that have just been drawn.
+    #[inline(always)]
+    fn draw_ring(lanes: &Lanes, pixels: &mut [[u8; 4]; LANES], visible: [bool; LANES], ring: (f32, Color)) {
+        let (width, color) = ring;
+        for lane in 0..LANES {
+            let inside = (lanes.distance[lane] + width + 0.5).clamp(0.0, 1.0);
+            let alpha = (0.5 - lanes.distance[lane]).clamp(0.0, 1.0);
+            if inside > 0.0 && alpha > 0.0 && visible[lane] {
+                mix_pixel(&mut pixels[lane], [color.r, color.g, color.b], to_byte(inside * alpha * 255.0));
+            }
+        }
+    }
+
+    #[inline(always)]
+    fn draw(&self, start: Vec2, pixels: &mut [[u8; 4]; LANES], depths: &mut [f32; LANES]) {
+        let places = self.places(start);
+        let (mut outermost, mut innermost) = (f32::NEG_INFINITY, f32::INFINITY);
+        for lane in 0..LANES {
+            outermost = outermost.max(places.distance[lane]);
+            innermost = innermost.min(places.distance[lane]);
+        }
+        if innermost >= self.halo {
+            return;
+        }
+        let lanes = self.lanes(start, &places);
+        if let Some(ring) = self.ring {
+            let visible = std::array::from_fn(|lane| lanes.key[lane] > depths[lane]);
+            self.draw_rim(&lanes, pixels, depths);
+            Self::draw_ring(&lanes, pixels, visible, ring);
+        } else if outermost < -0.5 {
+            self.draw_inside(&lanes, pixels, depths);
+        } else {
+            self.draw_rim(&lanes, pixels, depths);
+        }
     }
 }
 
-/// The flat band across a limb near its end: its place leaves room for the round end and for the next limb.
-struct Mark {
-    at: f32,
-    half: f32,
-    tones: Tones,
-}
-
-impl Mark {
-    fn new(cone: &SolidCone, style: &SolidStyle) -> Option<Self> {
-        let length = cone.shape.a.distance(cone.shape.b);
-        let end_radius = cone.shape.radius_b;
-        let color = style.mark.filter(|_| length > 5.0 * end_radius + 4.0)?;
-        let half = (0.30 * end_radius).max(0.75);
-        Some(Self { at: length - 2.2 * end_radius.max(1.0) - half, half, tones: Tones::new(color) })
-    }
+/// Middle and half width of the flat band across a limb near its end, pixels along the axis: its place leaves room for the round
+/// end and for the next limb. `None` on a limb too short for one.
+fn mark_of(cone: &SolidCone) -> Option<[f32; 2]> {
+    let length = cone.shape.a.distance(cone.shape.b);
+    let end_radius = cone.shape.radius_b;
+    let half = (0.30 * end_radius).max(0.75);
+    let at = length - 2.2 * end_radius.max(1.0) - half;
+    (length > 5.0 * end_radius + 4.0).then_some([at, half])
 }
 
 impl Canvas {
@@ -163,7 +261,7 @@ impl Canvas {
     /// order, but outlines are blended with what is there already.
     pub(super) fn solid(&mut self, cone: &SolidCone, style: &SolidStyle) {
         if cone.shape.is_swallowed() && cone.shape.a != cone.shape.b {
-            let plain = SolidStyle { mark: None, ..*style };
+            let plain = SolidStyle { has_mark: false, ..*style };
             for ball in cone.balls_from_back() {
                 self.solid(&ball, &plain);
             }
@@ -172,105 +270,39 @@ impl Canvas {
         let (width, height) = (self.width(), self.height());
         let (pixels, depth) = (self.image.pixels_mut(), &mut self.depth[..]);
         let frame = cone.shape.frame();
-        let surface = Surface::new(cone, frame);
-        let ink = Ink::new(cone, style, frame);
-        cone.shape.rows(&frame, width, height, ink.halo, |row, columns, first| {
-            let span = row * width + columns.start..row * width + columns.end;
-            let chunks = pixels[span.clone()].chunks_mut(LANES).zip(depth[span].chunks_mut(LANES));
-            for (chunk, (pixels, depths)) in chunks.enumerate() {
-                let start = Vec2::new(first.x + (chunk * LANES) as f32, first.y);
-                let lanes = surface.lanes(start);
-                let pixels = pixels.iter_mut().zip(depths).enumerate();
-                if ink.is_plain(start, &lanes) {
-                    for (lane, (pixel, standing)) in pixels {
-                        if lanes.key[lane] > *standing {
-                            *pixel = ink.tones.at(lanes.tone[lane]);
-                            *standing = lanes.key[lane];
+        let surface = Surface::new(cone, style, frame);
+        Level::best().run(
+            #[inline(always)]
+            || {
+                cone.shape.rows(
+                    &frame,
+                    width,
+                    height,
+                    surface.halo,
+                    #[inline(always)]
+                    |row, columns, first| {
+                        let span = row * width + columns.start..row * width + columns.end;
+                        let (whole, rest) = pixels[span.clone()].as_chunks_mut::<LANES>();
+                        let (whole_depth, rest_depth) = depth[span].as_chunks_mut::<LANES>();
+                        let mut start = first;
+                        for (pixels, depths) in whole.iter_mut().zip(whole_depth) {
+                            surface.draw(start, pixels, depths);
+                            start.x += LANES as f32;
                         }
-                    }
-                } else {
-                    for (lane, (pixel, standing)) in pixels {
-                        ink.draw(start, &lanes, lane, pixel, standing);
-                    }
-                }
-            }
-        });
-    }
-}
-
-/// A limb's looks, ready for its pixels.
-struct Ink {
-    frame: ConeFrame,
-    tones: Tones,
-    mark: Option<Mark>,
-    ring: Option<(f32, Color)>,
-    halo: f32,
-    /// Deeper inside than this, pixels, there is neither soft rim nor ring.
-    rim: f32,
-}
-
-impl Ink {
-    fn new(cone: &SolidCone, style: &SolidStyle, frame: ConeFrame) -> Self {
-        Self {
-            frame,
-            tones: Tones::new(style.color),
-            mark: Mark::new(cone, style),
-            ring: style.ring,
-            halo: style.halo.max(0.5),
-            rim: 0.5 + style.ring.map_or(0.0, |(width, _)| width),
-        }
-    }
-
-    /// Whether all pixels from `start` lie well inside and clear of the mark: most do, and need no further thought.
-    #[inline]
-    fn is_plain(&self, start: Vec2, lanes: &Lanes) -> bool {
-        let outermost = lanes.distance.iter().fold(f32::NEG_INFINITY, |most, &distance| most.max(distance));
-        outermost < -self.rim
-            && self.mark.as_ref().is_none_or(|mark| {
-                let along = self.frame.along(start + Vec2::new(LANES as f32 / 2.0, 0.0));
-                (along - mark.at).abs() > mark.half + 0.5 + LANES as f32 / 2.0
-            })
-    }
-
-    /// Draws one pixel, whatever it meets there.
-    #[inline]
-    fn draw(&self, start: Vec2, lanes: &Lanes, lane: usize, pixel: &mut [u8; 4], standing: &mut f32) {
-        let alpha = lanes.alpha[lane];
-        if alpha < 255 {
-            // Beside the limb and under its soft rim: darken what stands well behind it.
-            let near = ((self.halo - lanes.distance[lane]) / self.halo).min(1.0);
-            if near > 0.0 && *standing != FAR && *standing < lanes.behind[lane] {
-                mix_pixel(pixel, [0, 0, 0], (near * 130.0) as u32);
-            }
-        }
-        let key = lanes.key[lane];
-        if alpha == 0 || key <= *standing {
-            return;
-        }
-        let mut color = self.tones.at(lanes.tone[lane]);
-        if let Some(mark) = &self.mark {
-            let along = self.frame.along(start + Vec2::new(lane as f32, 0.0));
-            let inside = (mark.half + 0.5 - (along - mark.at).abs()).clamp(0.0, 1.0);
-            if inside > 0.0 {
-                let [r, g, b, _] = mark.tones.at(lanes.tone[lane]);
-                mix_pixel(&mut color, [r, g, b], to_byte(inside * 255.0));
-            }
-        }
-        if let Some((ring, ring_color)) = self.ring {
-            let inside = (lanes.distance[lane] + ring + 0.5).clamp(0.0, 1.0);
-            if inside > 0.0 {
-                mix_pixel(&mut color, [ring_color.r, ring_color.g, ring_color.b], to_byte(inside * 255.0));
-            }
-        }
-        if alpha == 255 {
-            *pixel = color;
-        } else {
-            let [r, g, b, _] = color;
-            mix_pixel(pixel, [r, g, b], alpha);
-        }
-        if alpha >= 128 {
-            *standing = key;
-        }
+                        if !rest.is_empty() {
+                            // The last few: drawn aside and taken over.
+                            let mut some = [[0; 4]; LANES];
+                            let mut some_depth = [f32::INFINITY; LANES];
+                            some[..rest.len()].copy_from_slice(rest);
+                            some_depth[..rest.len()].copy_from_slice(rest_depth);
+                            surface.draw(start, &mut some, &mut some_depth);
+                            rest.copy_from_slice(&some[..rest.len()]);
+                            rest_depth.copy_from_slice(&some_depth[..rest.len()]);
+                        }
+                    },
+                );
+            },
+        );
     }
 }
 
@@ -292,7 +324,7 @@ mod tests {
     }
 
     fn plain(color: Color) -> SolidStyle {
-        SolidStyle { color, mark: None, ring: None, halo: 0.5 }
+        SolidStyle { color, has_mark: false, ring: None, halo: 0.5 }
     }
 
     #[test]

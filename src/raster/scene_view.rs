@@ -4,10 +4,11 @@ use glam::{DVec3, Vec2};
 
 use crate::raster::camera::{Camera, View};
 use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke};
-use crate::raster::disc::{PlaneDisc, ReachCone, draw_disc, draw_plate, draw_reach};
+use crate::raster::disc::{Knob, PlaneDisc, ReachCone, draw_disc, draw_knob, draw_plate, draw_reach};
 use crate::raster::figure::{Figure, draw_figures};
 use crate::raster::floor::{Floor, draw_floor};
 use crate::raster::image::Image;
+use crate::raster::names::draw_names;
 use crate::raster::palette::{Color, Theme};
 
 /// The way a joint or tip takes through the world. A dot for each frame shows its speed.
@@ -53,8 +54,12 @@ pub struct SceneView {
     pub reaches: Vec<ReachCone>,
     /// Discs that turn the chosen joint.
     pub discs: Vec<PlaneDisc>,
-    /// Words.
+    /// Grips of the discs and of the limb's tip.
+    pub knobs: Vec<Knob>,
+    /// Words that are always shown, on plates.
     pub labels: Vec<Label>,
+    /// Words beside points, those first that matter most. Where there is no room for one it is left out.
+    pub names: Vec<Label>,
 }
 
 impl SceneView {
@@ -71,7 +76,9 @@ impl SceneView {
             tip_paths: Vec::new(),
             reaches: Vec::new(),
             discs: Vec::new(),
+            knobs: Vec::new(),
             labels: Vec::new(),
+            names: Vec::new(),
         }
     }
 
@@ -100,13 +107,17 @@ pub fn render_into(scene: &SceneView, canvas: &mut Canvas) {
     }
     draw_figures(canvas, &view, &figures, theme, scale);
     for reach in &scene.reaches {
-        draw_reach(canvas, &view, reach, scale);
+        draw_reach(canvas, &view, reach, theme, scale);
     }
     for path in &scene.tip_paths {
         draw_tip_path(canvas, &view, path, theme, scale);
     }
+    draw_names(canvas, &view, &scene.names, theme, scale);
     for disc in &scene.discs {
         draw_disc(canvas, &view, disc, theme, scale);
+    }
+    for knob in &scene.knobs {
+        draw_knob(canvas, &view, knob, theme, scale);
     }
     for label in &scene.labels {
         draw_label(canvas, &view, label, theme, scale);
@@ -117,20 +128,32 @@ fn draw_tip_path(canvas: &mut Canvas, view: &View, path: &TipPath, theme: &Theme
     let hidden = Hidden::Faint(0.3);
     let line = Stroke { color: path.color.with_alpha(0.85), width: 1.5 * scale, dash: None, hidden };
     canvas.polyline(view, &path.points, &line);
-    // Dots closer than this would run into a second, thicker line.
-    let least_gap = 5.0 * scale;
-    let mut last: Option<Vec2> = None;
-    for &point in &path.points {
-        let Some(spot) = Spot::of(view, point) else { continue };
-        if last.is_none_or(|last| last.distance(spot.pixel) >= least_gap) {
-            canvas.dot(view, point, 2.2 * scale, path.color, hidden);
-            last = Some(spot.pixel);
-        }
+    // A dot for each frame, or for every second, fourth … where most of them would run into a second, thicker line. Where the
+    // tip dwells they still do: that it dwells is what they say.
+    let seen: Vec<Option<Vec2>> =
+        path.points.iter().map(|&point| Spot::of(view, point).map(|spot| spot.pixel)).collect();
+    let step = dot_step(&seen, 3.6 * scale);
+    let start = path.current.unwrap_or(0) % step;
+    for &point in path.points.iter().skip(start).step_by(step) {
+        canvas.dot(view, point, 1.9 * scale, path.color, hidden);
     }
     if let Some(&now) = path.current.and_then(|frame| path.points.get(frame)) {
         canvas.dot(view, now, 5.5 * scale, theme.background, Hidden::Shown);
         canvas.dot(view, now, 4.0 * scale, path.color, Hidden::Shown);
     }
+}
+
+/// Every how many frames a dot is drawn, a power of two: so that the usual gap is at least so many pixels.
+fn dot_step(seen: &[Option<Vec2>], least_gap: f32) -> usize {
+    let gaps = seen.windows(2).filter_map(|pair| Some(pair[0]?.distance(pair[1]?)));
+    let mut moving: Vec<f32> = gaps.filter(|gap| *gap > 0.25).collect();
+    if moving.is_empty() {
+        return 1;
+    }
+    let middle = moving.len() / 2;
+    let (_, usual, _) = moving.select_nth_unstable_by(middle, f32::total_cmp);
+    let wanted = (least_gap / *usual).ceil().clamp(1.0, 64.0) as usize;
+    wanted.next_power_of_two()
 }
 
 fn draw_label(canvas: &mut Canvas, view: &View, label: &Label, theme: &Theme, scale: f32) {

@@ -1,4 +1,8 @@
 //! Flat shapes on the pixel grid: which pixels they touch and how much of each they cover.
+#![expect(
+    clippy::inline_always,
+    reason = "what stays a function of its own is not built with wide instructions"
+)]
 
 use std::ops::Range;
 
@@ -83,7 +87,7 @@ impl RoundCone {
 
     /// Visits the rows that come within `margin` pixels of the outline, in a picture of `width × height`: the row, its
     /// columns that may be near enough, and the middle of the first of them, counted from the frame's origin.
-    #[inline]
+    #[inline(always)]
     pub(super) fn rows(
         &self,
         frame: &ConeFrame,
@@ -138,7 +142,7 @@ impl ConeFrame {
     /// The outline is the two circles and their outer tangents. Between the tangents' feet the line from a pixel square
     /// to the tangent meets the axis at `t`, and the circle there touches the tangent on that very line; beyond them
     /// the nearest circle is an end's. So one formula serves both, without a branch.
-    #[inline]
+    #[inline(always)]
     pub(super) fn sample(&self, from_origin: Vec2) -> Sample {
         let along = from_origin.x * self.axis.x + from_origin.y * self.axis.y;
         let across = self.axis.x * from_origin.y - self.axis.y * from_origin.x;
@@ -151,6 +155,7 @@ impl ConeFrame {
     }
 
     /// How far along the axis a pixel is, pixels from the frame's origin.
+    #[inline(always)]
     pub(super) fn along(&self, from_origin: Vec2) -> f32 {
         from_origin.dot(self.axis)
     }

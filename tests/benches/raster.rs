@@ -31,6 +31,33 @@ fn scene(width: usize, height: usize) -> SceneView {
     scene
 }
 
+/// A figure of 65 joints that fills the height of the picture: a trunk, and limbs that end in five fingers or toes each.
+fn person() -> Vec<FigureLimb> {
+    let mut limbs = Vec::new();
+    let mut chain = |from: DVec3, step: DVec3, count: usize| -> DVec3 {
+        let mut at = from;
+        for _ in 0..count {
+            limbs.push(FigureLimb { from: at, to: at + step, joint: limbs.len() });
+            at += step;
+        }
+        at
+    };
+    let hips = DVec3::new(0.0, 0.95, 0.0);
+    let neck = chain(hips, DVec3::Y * 0.11, 5);
+    chain(neck, DVec3::Y * 0.1, 3);
+    for side in [-1.0, 1.0] {
+        let hand = chain(neck, DVec3::new(0.16 * side, -0.05, 0.06), 4);
+        let foot = chain(hips, DVec3::new(0.05 * side, -0.3, 0.02), 3);
+        for finger in 0..5 {
+            let spread = f64::from(finger) * 0.02 - 0.04;
+            chain(hand, DVec3::new(0.03 * side, spread, 0.01), 3);
+            chain(foot, DVec3::new(spread, -0.005, 0.03), if finger < 3 { 2 } else { 1 });
+        }
+    }
+    limbs.truncate(65);
+    limbs
+}
+
 fn main() {
     let runs = if std::env::args().any(|argument| argument == "--test") { 1 } else { 300 };
     for (width, height) in [(900, 600), (1920, 1080)] {
@@ -48,6 +75,9 @@ fn main() {
         let points = (0..300).map(|i| DVec3::new(f64::from(i) * 0.005 - 0.7, 1.5, 0.9)).collect();
         full.tip_paths.push(TipPath { points, current: Some(150), color: Theme::DARK.planes[0] });
         measure(&format!("the same with the source and a tip path, {width} × {height}"), &full, runs);
+        full.figures = vec![Figure::new(person(), FigureStyle::After)];
+        full.tip_paths.clear();
+        measure(&format!("a person of 65 joints, floor and shadows, {width} × {height}"), &full, runs);
     }
 }
 

@@ -30,6 +30,7 @@
 //! | `gui_display` | the real program in a real window under Xvfb, driven by mouse and keyboard |
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
+//! | `gui_space` | the skeleton view driven by pointer and keys: discs, tips, limits; asserted are the turns of the result |
 //! | `gui_start` | the real program where no window can open |
 //! | `gui_two` | two clips in the window: the blend lane, its pictures and forms, loops |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
@@ -74,6 +75,8 @@ mod gui_display;
 mod gui_paint;
 #[cfg(feature = "gui-tests")]
 mod gui_screen;
+#[cfg(feature = "gui-tests")]
+mod gui_space;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
 #[cfg(feature = "gui-tests")]

@@ -6,10 +6,10 @@ use std::sync::Arc;
 use glam::{DVec3, Vec2};
 use turnwright::clip::{Clip, FrameGrid, JointTracks, RotationTrack};
 use turnwright::raster::{
-    Align, Area, Bounds, Camera, Canvas, ClipPage, Curve, Figure, FigureLimb, FigureStyle, Floor, Girth,
-    Image, Label, Lens, MapRow, Moment, PlaneDisc, Plot, ReachCone, SceneView, SnagMark, StraightView,
-    StripStyle, TextStyle, Theme, Tile, TipPath, TurnMap, ValueUnit, chart_canvas, clip_page, compose,
-    contact_strip, draw_plot, draw_text, draw_turn_map, limbs_of_skeleton, render,
+    Align, Area, Bounds, Camera, Canvas, ClipPage, Curve, DiscState, Figure, FigureLimb, FigureStyle, Floor,
+    Girth, Image, Knob, Label, Lens, MapRow, Moment, PlaneDisc, Plot, ReachCone, SceneView, SnagMark,
+    StraightView, StripStyle, TextStyle, Theme, Tile, TipPath, TurnMap, ValueUnit, chart_canvas, clip_page,
+    compose, contact_strip, draw_plot, draw_text, draw_turn_map, limbs_of_skeleton, render,
 };
 use turnwright::rotor::{Bivector, Rotor};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
@@ -175,6 +175,7 @@ fn a_plane_disc_lies_in_its_plane_and_says_its_angle() {
             color: theme.planes[2],
             name: "xy".to_owned(),
             angle_text: "92°".to_owned(),
+            state: DiscState::Held,
         });
         golden::check(name, &render(&scene));
     }
@@ -192,9 +193,88 @@ fn a_reach_is_a_pale_cone_with_a_firm_rim() {
     scene.reaches.push(ReachCone {
         apex: DVec3::new(0.0, -0.6, 0.0),
         rim: (0..24).map(rim).collect(),
+        now: None,
         color,
     });
     golden::check("reach", &render(&scene));
+}
+
+#[test]
+fn waiting_discs_read_as_rings_in_space_and_their_grips_say_which_is_which() {
+    for (name, theme) in [("discs_waiting_dark", Theme::DARK), ("discs_waiting_light", Theme::LIGHT)] {
+        let mut scene = scene(Camera { yaw_rad: 0.5, pitch_rad: 0.4, ..front() }, theme);
+        scene.figures.push(figure(&[[[-0.1, -0.2, 0.0], [0.5, 0.28, 0.0]]], FigureStyle::After));
+        let axes = [(DVec3::Y, DVec3::Z), (DVec3::Z, DVec3::X), (DVec3::X, DVec3::Y)];
+        for (plane, (u, v)) in axes.into_iter().enumerate() {
+            let disc = PlaneDisc {
+                center: DVec3::ZERO,
+                u,
+                v,
+                radius: 0.5,
+                from_rad: 0.0,
+                to_rad: 0.0,
+                color: theme.planes[plane],
+                name: String::new(),
+                angle_text: String::new(),
+                state: if plane == 1 { DiscState::Ready } else { DiscState::Idle },
+            };
+            scene.knobs.push(Knob {
+                at: disc.rim(PI / 4.0),
+                color: disc.color,
+                is_ready: plane == 1,
+                letters: ["yz", "zx", "xy"][plane].to_owned(),
+                away_from: DVec3::ZERO,
+            });
+            scene.discs.push(disc);
+        }
+        golden::check(name, &render(&scene));
+    }
+}
+
+#[test]
+fn a_limb_beyond_its_reach_is_seen_outside_the_cone() {
+    let mut scene = scene(Camera { yaw_rad: 0.5, pitch_rad: 0.3, ..front() }, Theme::DARK);
+    let apex = DVec3::new(0.0, -0.6, 0.0);
+    let now = DVec3::new(0.75, 0.1, 0.2);
+    scene.figures.push(figure(&[[apex.to_array(), now.to_array()]], FigureStyle::After));
+    let rim = |i: i32| {
+        let turn = f64::from(i) / 24.0 * 2.0 * PI;
+        DVec3::new(0.3 * turn.cos(), 0.35, 0.3 * turn.sin())
+    };
+    let color = Theme::DARK.snag;
+    scene.reaches.push(ReachCone { apex, rim: (0..24).map(rim).collect(), now: Some(now), color });
+    golden::check("reach_beyond", &render(&scene));
+}
+
+#[test]
+fn names_find_room_beside_their_joints() {
+    let mut scene = scene(front(), Theme::LIGHT);
+    let skeleton = biped(1.9, 0.4);
+    let world = skeleton.world(&skeleton.rest_pose());
+    let figure = pose(&skeleton, FigureStyle::After);
+    scene.camera.fit(&figure.bounds().unwrap(), SIZE.0, SIZE.1, 0.1);
+    scene.figures.push(figure);
+    for (joint, own) in world.iter().enumerate() {
+        scene.names.push(Label { at: own.position(), text: format!("joint {joint}") });
+    }
+    golden::check("names", &render(&scene));
+}
+
+#[test]
+fn a_mirrored_view_is_the_picture_of_the_mirrored_scene() {
+    let limbs = [[[-0.6, -0.5, 0.2], [0.1, 0.0, 0.0]], [[0.1, 0.0, 0.0], [0.8, 0.4, -0.3]]];
+    let camera = Camera { yaw_rad: 0.4, pitch_rad: 0.2, is_mirrored: true, ..front() };
+    let mut mirrored = scene(camera, Theme::DARK);
+    mirrored.figures.push(figure(&limbs, FigureStyle::After));
+    // Exchanging left and right of the scene and looking from the other side gives the same picture.
+    let flip = |p: [f64; 3]| [-p[0], p[1], p[2]];
+    let flipped = limbs.map(|limb| limb.map(flip));
+    let mut twin = scene(Camera { yaw_rad: -0.4, is_mirrored: false, ..camera }, Theme::DARK);
+    twin.figures.push(figure(&flipped, FigureStyle::After));
+    let (a, b) = (render(&mirrored), render(&twin));
+    let differing =
+        a.pixels().iter().zip(b.pixels()).filter(|(a, b)| (0..4).any(|i| a[i].abs_diff(b[i]) > 2)).count();
+    assert!(differing < 5, "{differing} pixels differ");
 }
 
 #[test]

@@ -1,6 +1,7 @@
 //! What a person can ask for without further words, and the menus that hold it.
 
 use super::CurveAction;
+use super::SpaceAction;
 
 /// An action without parameters: an entry of the table.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
@@ -98,6 +99,7 @@ pub enum Action {
     BlendLane,
     BlendClips,
     Retarget,
+    Space(SpaceAction),
 }
 
 /// The menus, from left to right.
@@ -107,6 +109,7 @@ pub enum Menu {
     File,
     Edit,
     View,
+    Space,
     Snags,
     Keys,
     Time,
@@ -115,8 +118,8 @@ pub enum Menu {
 
 impl Menu {
     /// All menus in order.
-    pub const ALL: [Self; 7] =
-        [Self::File, Self::Edit, Self::View, Self::Snags, Self::Keys, Self::Time, Self::Help];
+    pub const ALL: [Self; 8] =
+        [Self::File, Self::Edit, Self::View, Self::Space, Self::Snags, Self::Keys, Self::Time, Self::Help];
 
     /// Its title.
     pub const fn title(self) -> &'static str {
@@ -124,6 +127,7 @@ impl Menu {
             Self::File => "File",
             Self::Edit => "Edit",
             Self::View => "View",
+            Self::Space => "Space",
             Self::Snags => "Snags",
             Self::Keys => "Keys",
             Self::Time => "Time",

@@ -16,6 +16,7 @@ mod blend;
 mod curves;
 mod carry;
 mod situation;
+mod space;
 mod table;
 mod time;
 
@@ -24,6 +25,7 @@ pub use blend::BlendCommand;
 pub use curves::{CurveAction, CurveCommand};
 pub use carry::{CarryCommand, CarrySheet};
 pub use situation::Situation;
+pub use space::{SpaceAction, SpaceCommand};
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
 pub(crate) use time::LEARNED;
 pub use time::{Offer, TimeCommand};
@@ -104,4 +106,6 @@ pub enum Command {
     Blend(BlendCommand),
     /// About carrying the clip to another skeleton.
     Carry(CarryCommand),
+    /// What the skeleton view asks for.
+    Space(SpaceCommand),
 }

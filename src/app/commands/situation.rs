@@ -1,5 +1,6 @@
 //! What decides which entries of the table can be done.
 
+use super::super::session::SpaceHabits;
 use super::super::view_models::{CurveView, HeatKind};
 use crate::scene::SearchChoice;
 
@@ -85,4 +86,8 @@ pub struct Situation {
     pub shows_blend_lane: bool,
     /// The two clips of a blend are drawn as faint figures.
     pub shows_blend_clips: bool,
+    /// How the skeleton view is set.
+    pub space: SpaceHabits,
+    /// The skeleton view exchanges left and right.
+    pub is_mirrored: bool,
 }

@@ -2,9 +2,10 @@
 
 use egui::{Key, KeyboardShortcut, Modifiers};
 
+use super::super::session::{Disc, TurnPlanes};
 use super::super::view_models::{CurveView, HeatKind};
 use super::time::{LEARNED, Offer};
-use super::{Action, CurveAction, Menu, Situation};
+use super::{Action, CurveAction, Menu, Situation, SpaceAction};
 
 /// One entry of the table.
 #[derive(Clone, Copy, Debug)]
@@ -41,6 +42,10 @@ const fn ctrl_shift(key: Key) -> KeyboardShortcut {
 
 const fn shift(key: Key) -> KeyboardShortcut {
     KeyboardShortcut::new(Modifiers::SHIFT, key)
+}
+
+const fn ctrl_alt(key: Key) -> KeyboardShortcut {
+    KeyboardShortcut::new(Modifiers::COMMAND.plus(Modifiers::ALT), key)
 }
 
 const fn alt(key: Key) -> KeyboardShortcut {
@@ -82,6 +87,8 @@ const CLIP: fn(&Situation) -> bool = |now| now.has_clip;
 const JOINT: fn(&Situation) -> bool = |now| now.has_clip && now.has_joint;
 const BLEND: fn(&Situation) -> bool = |now| now.has_clip && now.has_blend;
 const KEYS: fn(&Situation) -> bool = |now| now.has_joint && now.chosen_keys > 0;
+const TURNS: fn(&Situation) -> bool =
+    |now| now.has_clip && now.has_joint && !matches!(now.space.disc, Disc::Free);
 const SNAG: fn(&Situation) -> bool = |now| now.has_snag;
 const MARKERS: fn(&Situation) -> bool = |now| now.markers > 0;
 const SNAGS: fn(&Situation) -> bool = |now| now.snags > 0;
@@ -90,7 +97,8 @@ const SNAGS: fn(&Situation) -> bool = |now| now.snags > 0;
 pub const TABLE: &[Entry] = &{
     use Action as A;
     use CurveAction as C;
-    use Menu::{Edit as E, File as F, Help as H, Keys as K, Snags as S, Time as P, View as V};
+    use Menu::{Edit as E, File as F, Help as H, Keys as K, Snags as S, Space as R, Time as P, View as V};
+    use SpaceAction as O;
     [
         entry(
             F,
@@ -407,6 +415,185 @@ pub const TABLE: &[Entry] = &{
         entry(V, A::Light, "Light window", "Dark on light", Some(ctrl(Key::D)), ALWAYS)
             .switch(|now| now.is_light)
             .group(),
+        entry(
+            R,
+            A::Space(O::Arm(Disc::Yz)),
+            "Turn in plane yz",
+            "The keys that turn take the disc in plane yz: y goes towards z",
+            Some(ctrl_alt(Key::Num1)),
+            JOINT,
+        )
+        .switch(|now| matches!(now.space.disc, Disc::Yz)),
+        entry(
+            R,
+            A::Space(O::Arm(Disc::Zx)),
+            "Turn in plane zx",
+            "The keys that turn take the disc in plane zx: z goes towards x",
+            Some(ctrl_alt(Key::Num2)),
+            JOINT,
+        )
+        .switch(|now| matches!(now.space.disc, Disc::Zx)),
+        entry(
+            R,
+            A::Space(O::Arm(Disc::Xy)),
+            "Turn in plane xy",
+            "The keys that turn take the disc in plane xy: x goes towards y",
+            Some(ctrl_alt(Key::Num3)),
+            JOINT,
+        )
+        .switch(|now| matches!(now.space.disc, Disc::Xy)),
+        entry(
+            R,
+            A::Space(O::Arm(Disc::Twist)),
+            "Twist about the limb",
+            "The keys that turn twist the joint about its own limb",
+            Some(ctrl_alt(Key::Num4)),
+            JOINT,
+        )
+        .switch(|now| matches!(now.space.disc, Disc::Twist)),
+        entry(
+            R,
+            A::Space(O::TurnBack),
+            "Turn back a step",
+            "The chosen joint turns a step the negative way, with the disc chosen above",
+            Some(ctrl_alt(Key::Num9)),
+            TURNS,
+        )
+        .group(),
+        entry(
+            R,
+            A::Space(O::TurnOn),
+            "Turn on a step",
+            "The chosen joint turns a step the positive way, with the disc chosen above",
+            Some(ctrl_alt(Key::Num0)),
+            TURNS,
+        ),
+        entry(
+            R,
+            A::Space(O::SmallerStep),
+            "Smaller turn step",
+            "Keys turn by less, and a drag with Ctrl held snaps to less",
+            Some(alt(Key::Comma)),
+            CLIP,
+        ),
+        entry(
+            R,
+            A::Space(O::LargerStep),
+            "Larger turn step",
+            "Keys turn by more, and a drag with Ctrl held snaps to more",
+            Some(alt(Key::Period)),
+            CLIP,
+        ),
+        entry(
+            R,
+            A::Space(O::ShorterFalloff),
+            "Shorter falloff",
+            "A soft push on captured motion reaches less far in time",
+            Some(ctrl_alt(Key::OpenBracket)),
+            CLIP,
+        ),
+        entry(
+            R,
+            A::Space(O::LongerFalloff),
+            "Longer falloff",
+            "A soft push on captured motion reaches farther in time",
+            Some(ctrl_alt(Key::CloseBracket)),
+            CLIP,
+        ),
+        entry(
+            R,
+            A::Space(O::Planes(TurnPlanes::Rest)),
+            "Planes of the joint at rest",
+            "The discs lie in the joint's own planes as they are at rest",
+            Some(ctrl_alt(Key::Num6)),
+            CLIP,
+        )
+        .switch(|now| matches!(now.space.planes, TurnPlanes::Rest))
+        .group(),
+        entry(
+            R,
+            A::Space(O::Planes(TurnPlanes::Parent)),
+            "Planes of the parent",
+            "The discs lie in the parent's planes",
+            Some(ctrl_alt(Key::Num7)),
+            CLIP,
+        )
+        .switch(|now| matches!(now.space.planes, TurnPlanes::Parent)),
+        entry(
+            R,
+            A::Space(O::Planes(TurnPlanes::World)),
+            "Planes of the scene",
+            "The discs lie in the scene's planes",
+            Some(ctrl_alt(Key::Num8)),
+            CLIP,
+        )
+        .switch(|now| matches!(now.space.planes, TurnPlanes::World)),
+        entry(
+            R,
+            A::Space(O::FitJoint),
+            "Fit chosen joint",
+            "Bring the chosen joint and its limbs into view",
+            Some(alt(Key::C)),
+            JOINT,
+        )
+        .group(),
+        entry(
+            R,
+            A::Space(O::Mirror),
+            "Mirror view",
+            "Left and right exchanged, as in a mirror: a pose looks new",
+            Some(alt(Key::M)),
+            CLIP,
+        )
+        .switch(|now| now.is_mirrored),
+        entry(
+            R,
+            A::Space(O::Discs),
+            "Show turn discs",
+            "Discs around the chosen joint that turn it when dragged",
+            Some(alt(Key::D)),
+            CLIP,
+        )
+        .switch(|now| now.space.shows_discs)
+        .group(),
+        entry(
+            R,
+            A::Space(O::Path),
+            "Show tip path",
+            "The way of the chosen limb's tip, a dot for each frame, grey in the source",
+            Some(alt(Key::P)),
+            CLIP,
+        )
+        .switch(|now| now.space.shows_path),
+        entry(
+            R,
+            A::Space(O::Neighbours),
+            "Show neighbouring poses",
+            "Faint dashed poses before and after the playhead",
+            Some(alt(Key::N)),
+            CLIP,
+        )
+        .switch(|now| now.space.shows_neighbours),
+        entry(
+            R,
+            A::Space(O::Reach),
+            "Show limit of the joint",
+            "The cone that the chosen joint may point into, and how much of it is used",
+            Some(alt(Key::R)),
+            CLIP,
+        )
+        .switch(|now| now.space.shows_reach),
+        entry(
+            R,
+            A::Space(O::Names),
+            "Show joint names",
+            "A name at each joint, as far as there is room",
+            Some(alt(Key::K)),
+            CLIP,
+        )
+        .switch(|now| now.space.shows_names),
+        entry(R, A::Space(O::Floor), "Show floor", "The grid below the figure", Some(alt(Key::G)), CLIP)
+            .switch(|now| now.space.shows_floor),
         entry(S, A::FindAgain, "Find again", "Look for snags in the source anew", Some(plain(Key::F5)), CLIP),
         entry(S, A::StopFinding, "Stop finding", "Stop looking for snags", Some(shift(Key::F5)), |now| {
             now.is_finding

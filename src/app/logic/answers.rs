@@ -5,7 +5,7 @@ use std::sync::Arc;
 
 use egui::Context;
 
-use super::super::bench::{Evaluated, FromClips, Path3, Project, Searched, SourceState, file_name};
+use super::super::bench::{Evaluated, FromClips, Project, Searched, SourceState, file_name};
 use super::super::file_picker::{Picked, Purpose};
 use super::super::panels::{Dialog, Form, Level, Message};
 use super::super::view_models::{CurveKey, CurveSet, HeatMap, HeatWish, TimeWindow};
@@ -75,8 +75,6 @@ pub(crate) enum Answer {
     Heat(FromClips<HeatWish, Arc<HeatMap>>),
     /// The curves.
     Curves(Vec<FromClips<CurveKey, Arc<CurveSet>>>),
-    /// The way of a tip.
-    TipPath(FromClips<usize, Arc<Path3>>),
     /// The scene was written, or not.
     Saved {
         /// For which project.
@@ -165,7 +163,6 @@ impl Window {
                 self.bench.more_curves = curves.split_off(curves.len().min(1));
                 self.bench.curves = curves.pop();
             }
-            Answer::TipPath(path) => self.bench.tip_path = Some(path),
             Answer::Saved { serial, revision, path, result } => {
                 self.take_saved(serial, revision, &path, result, ctx);
             }
@@ -254,7 +251,6 @@ impl Window {
         self.bench.curves = None;
         self.bench.more_curves = Vec::new();
         self.bench.curve_hand.let_go();
-        self.bench.tip_path = None;
         self.bench.blend = None;
         self.bench.carry = None;
         self.bench.carry_measured = None;

@@ -6,7 +6,7 @@ use super::super::bench::{Evaluated, FromClips, Searched};
 use super::super::blend_state::BlendKey;
 use super::super::carry_state::CarryKey;
 use super::super::jobs::Slot;
-use super::super::view_models::{CurveKey, HeatKind, HeatWish, changes, curve_set, heat_map, tip_path};
+use super::super::view_models::{CurveKey, HeatKind, HeatWish, changes, curve_set, heat_map};
 use super::super::window::Window;
 use super::answers::Answer;
 use crate::clip::Clip;
@@ -29,8 +29,6 @@ pub(crate) struct Asked {
     pub curves: Option<FromClips<Vec<CurveKey>, ()>>,
     /// A blend.
     pub blend: Option<BlendKey>,
-    /// Clips and joint.
-    pub tip_path: Option<FromClips<usize, ()>>,
     /// What a retarget hangs on.
     pub carry: Option<CarryKey>,
     /// The same, carried whole.
@@ -51,7 +49,6 @@ impl Window {
         };
         self.order_heat(&before, &result);
         self.order_curves(&before, &result);
-        self.order_tip_path(&before, &result);
     }
 
     fn serial(&self) -> u64 {
@@ -181,27 +178,6 @@ impl Window {
             };
             let sets: Option<Vec<_>> = order.parameters.iter().map(sample).collect();
             Some(Answer::Curves(sets?))
-        });
-    }
-
-    fn order_tip_path(&mut self, source: &Arc<Clip>, result: &Arc<Clip>) {
-        let Some(joint) = self.bench.session.joint else { return };
-        let is_there = self.bench.tip_path.as_ref().is_some_and(|path| path.is_of(source, result, &joint));
-        let is_ordered =
-            self.asked.tip_path.as_ref().is_some_and(|asked| asked.is_of(source, result, &joint));
-        if is_there || (is_ordered && self.jobs.is_running(Slot::TipPath)) {
-            return;
-        }
-        let order = FromClips {
-            source: Arc::clone(source),
-            result: Arc::clone(result),
-            parameters: joint,
-            value: (),
-        };
-        self.asked.tip_path = Some(order.clone());
-        self.jobs.submit(Slot::TipPath, move |watch| {
-            let value = tip_path(&order.result, joint, watch).ok()?;
-            Some(Answer::TipPath(order.with(Arc::new(value))))
         });
     }
 }

@@ -8,6 +8,9 @@ mod changes;
 mod curve_measure;
 mod curves;
 mod figure;
+mod hand_drag;
+mod hand_turns;
+mod handles;
 mod heat;
 mod joint_numbers;
 mod joint_tree;
@@ -19,10 +22,12 @@ mod memo;
 mod pass_order;
 mod pass_rows;
 mod pyramid;
+mod reach;
 mod sampled;
 mod snag_rows;
 mod time_choice;
 mod time_window;
+mod trail;
 mod words;
 
 pub use blend::{
@@ -38,7 +43,12 @@ pub use change_log::{LogBlock, log_blocks};
 pub use changes::{Changes, changes};
 pub use curve_measure::Measure;
 pub use curves::{Ceiling, CurveKey, CurveLine, CurveSet, CurveView, LimitBand, curve_set, fitted_values};
-pub use figure::{FaintFigure, FigureRequest, Stage, bounds_at, figure_view, scene_from_joint, tip_path};
+pub use figure::{
+    FaintFigure, FigureRequest, FigureView, Handling, Stage, bounds_at, figure_view, joint_bounds, scene_from_joint,
+};
+pub use hand_drag::{Drag, FINE, Swept, step_turn};
+pub use hand_turns::{HandTurn, HandTurns, hand_edit, is_dense, turn_now};
+pub use handles::{DiscHandle, Handles, TipHandle, disc_radius_px, handles};
 pub use heat::{HeatKind, HeatMap, HeatScale, HeatWish, heat_map};
 pub use joint_numbers::{JointNumbers, RotationNumbers, joint_numbers};
 pub use joint_tree::{TreeRow, tree_rows};
@@ -50,8 +60,10 @@ pub use memo::Memo;
 pub use pass_order::place_for;
 pub use pass_rows::{PassRow, pass_rows};
 pub use pyramid::Pyramid;
+pub use reach::{ReachOf, reach_of};
 pub use sampled::{SampleTimes, limb_direction, rotation_at};
 pub use snag_rows::{SnagFilter, SnagOrder, SnagRow, SnagState, snag_rows, snag_states};
 pub use time_choice::TimeChoice;
 pub use time_window::{Tick, TimeWindow, ticks};
+pub use trail::Trail;
 pub use words::{counted, degrees, degrees_fixed, frames_text, rate_text, seconds};
