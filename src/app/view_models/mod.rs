@@ -31,7 +31,8 @@ pub use change_log::{LogBlock, log_blocks};
 pub use changes::{Changes, changes};
 pub use curves::{CurveLine, CurveSet, CurveView, curve_set};
 pub use figure::{
-    FaintFigure, FigureRequest, FigureView, Handling, Stage, bounds_at, figure_view, joint_bounds, scene_from_joint,
+    FaintFigure, FigureRequest, FigureView, Handling, Stage, bounds_at, figure_view, joint_bounds,
+    scene_from_joint,
 };
 pub use hand_drag::{Drag, FINE, Swept, step_turn};
 pub use hand_turns::{HandTurn, HandTurns, hand_edit, is_dense, turn_now};
