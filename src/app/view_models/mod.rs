@@ -44,7 +44,8 @@ pub use changes::{Changes, changes};
 pub use curve_measure::Measure;
 pub use curves::{Ceiling, CurveKey, CurveLine, CurveSet, CurveView, LimitBand, curve_set, fitted_values};
 pub use figure::{
-    FaintFigure, FigureRequest, FigureView, Handling, Stage, bounds_at, figure_view, joint_bounds, scene_from_joint,
+    FaintFigure, FigureRequest, FigureView, Handling, Stage, bounds_at, figure_view, joint_bounds,
+    scene_from_joint,
 };
 pub use hand_drag::{Drag, FINE, Swept, step_turn};
 pub use hand_turns::{HandTurn, HandTurns, hand_edit, is_dense, turn_now};
