@@ -12,9 +12,9 @@ use super::{Bivector, Motion, Rotor};
 ///
 /// let turned = |deg| Rotor::from_plane_angles(Bivector::from_degrees([0.0, 0.0, deg]));
 /// let third = slerp(turned(30.0), turned(-60.0), 1.0 / 3.0);
-/// assert!(third.turn_to(turned(0.0)) < 1e-15);
+/// assert!(third.turn_to(turned(0.0)) < 1e-14);
 /// // 340° one way round is 20° the other.
-/// assert!(slerp(turned(-170.0), turned(170.0), 0.5).turn_to(turned(180.0)) < 1e-15);
+/// assert!(slerp(turned(-170.0), turned(170.0), 0.5).turn_to(turned(180.0)) < 1e-14);
 /// ```
 ///
 /// Source: Shoemake 1985, "Animating rotation with quaternion curves".
@@ -61,7 +61,7 @@ pub fn slerp_as_signed(a: Rotor, b: Rotor, t: f64) -> Rotor {
 /// let key = |deg| Rotor::from_plane_angles(Bivector::from_degrees([0.0, deg, 0.0]));
 /// let [before, a, b, after] = [0.0, 40.0, 80.0, 120.0].map(key);
 /// let (inner_a, inner_b) = (squad_inner(before, a, b), squad_inner(a, b, after));
-/// assert!(squad(a, inner_a, inner_b, b, 0.25).turn_to(key(50.0)) < 1e-15);
+/// assert!(squad(a, inner_a, inner_b, b, 0.25).turn_to(key(50.0)) < 1e-14);
 /// ```
 ///
 /// Source: Shoemake 1987, "Quaternion calculus and fast animation".

@@ -111,8 +111,8 @@ impl System<'_> {
     fn near(&self, guess: &[DVec3]) -> Option<Vec<DVec3>> {
         /// 3 to 5 are usual.
         const MOST_ROUNDS: usize = 12;
-        /// Of the largest rate. Over a segment this turns by less than what the rounding of its ends does.
-        const SETTLED: f64 = 4e-15;
+        /// Of the largest rate: below its rounding.
+        const SETTLED: f64 = 1e-16;
         let mut rates = Vec::with_capacity(guess.len());
         let plain = self.eliminated(None, Vec::new());
         plain.solve(guess, &mut rates);
