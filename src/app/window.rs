@@ -1,14 +1,15 @@
 //! The window as one screen: its state, and one frame of it.
 
 use std::path::PathBuf;
+use std::sync::Arc;
 use std::time::Duration;
 
 use egui::{Context, Event, Key, KeyboardShortcut, Modifiers, Ui};
 
-use crate::exchange::ClipAddress;
+use crate::exchange::{ClipAddress, Source};
 
 use super::Screen;
-use super::bench::Bench;
+use super::bench::{Bench, Project};
 use super::commands::{Action, Command, CurveAction, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
 use super::file_picker::FilePicker;
 use super::jobs::Jobs;
@@ -103,6 +104,13 @@ impl Window {
             Start::Files(addresses) => window.open_addresses(addresses),
         }
         window
+    }
+
+    /// Shows files that are open already, as if they had been read: a new document with work on each of their clips.
+    pub fn show_sources(&mut self, sources: Vec<Arc<Source>>) {
+        let project = Project::of_sources(self.take_serial(), sources);
+        self.show_project(project, 0);
+        self.order_work();
     }
 
     /// What is open and looked at.

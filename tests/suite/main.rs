@@ -26,6 +26,7 @@
 //! | `planter` | faults planted into the real clips: what share is found, what is told wrongly, how near the mend comes |
 //! | `gui_curves` | editing on the rotation curves, by pointer and keyboard; what is asserted is the document |
 //! | `gui_display` | the real program in a real window under Xvfb, driven by mouse and keyboard |
+//! | `gui_fluid` | the window rests while nothing happens, and shows a change in the next frame |
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
 //! | `gui_start` | the real program where no window can open |
@@ -65,6 +66,8 @@ mod golden;
 mod gui_curves;
 #[cfg(feature = "gui-tests")]
 mod gui_display;
+#[cfg(feature = "gui-tests")]
+mod gui_fluid;
 #[cfg(feature = "gui-tests")]
 mod gui_paint;
 #[cfg(feature = "gui-tests")]

@@ -234,12 +234,12 @@ impl Window {
         self.dialog = several.then_some(Dialog::ChooseClip);
     }
 
-    pub(super) fn take_serial(&mut self) -> u64 {
+    pub(in super::super) fn take_serial(&mut self) -> u64 {
         self.next_serial += 1;
         self.next_serial
     }
 
-    pub(super) fn show_project(&mut self, project: Project, work: usize) {
+    pub(in super::super) fn show_project(&mut self, project: Project, work: usize) {
         self.messages.retain(|message| message.level == Level::Done);
         self.dialog = None;
         self.bench.heat = None;
