@@ -33,6 +33,8 @@ pub enum Slot {
     Relocate,
     /// Comparing the two clips of a blend.
     Blend,
+    /// Writing the settings.
+    Settings,
 }
 
 impl Slot {
@@ -46,7 +48,7 @@ impl Slot {
             Self::Heat => "Drawing the turn map",
             Self::Curves => "Sampling curves",
             Self::TipPath => "Following the tip",
-            Self::Save => "Saving",
+            Self::Save | Self::Settings => "Saving",
             Self::Export => "Exporting",
             Self::Blend => "Comparing clips",
         }
@@ -54,7 +56,10 @@ impl Slot {
 
     /// Short work that the eye waits for must not stand behind long work.
     const fn is_quick(self) -> bool {
-        matches!(self, Self::Evaluate | Self::Curves | Self::TipPath | Self::Save | Self::Blend)
+        matches!(
+            self,
+            Self::Evaluate | Self::Curves | Self::TipPath | Self::Save | Self::Blend | Self::Settings
+        )
     }
 }
 

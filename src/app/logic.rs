@@ -8,6 +8,7 @@ mod limits;
 mod markers;
 mod orders;
 mod playing;
+mod settings;
 mod snags;
 mod time;
 
@@ -16,6 +17,7 @@ use egui::Context;
 use super::commands::{Action, Command, CurveAction};
 use super::panels::{Dialog, Form, Message, Then};
 use super::session::Fit;
+use super::settings::Layout;
 use super::view_models::{CurveView, HeatKind, TimeChoice};
 use super::window::Window;
 use crate::raster::{Lens, StraightView};
@@ -25,6 +27,7 @@ use limits::LimitsFrom;
 
 pub(crate) use answers::Answer;
 pub(crate) use orders::Asked;
+pub(crate) use settings::Memory;
 
 impl Window {
     /// Does everything that was asked for.
@@ -100,6 +103,7 @@ impl Window {
                 }
             }
             Command::Cancel(slot) => self.stop(slot),
+            Command::Settings(command) => self.run_settings(command, ctx),
             Command::Time(command) => self.run_time(command),
             Command::Blend(command) => self.run_blend(command),
         }
@@ -193,6 +197,9 @@ impl Window {
             A::RenameMarker => self.ask_marker_name_here(),
             A::RemoveMarker => self.remove_marker_here(),
             A::PreviousMarker | A::NextMarker => self.step_marker(action == A::NextMarker),
+            A::Larger | A::Smaller | A::UsualSize => self.zoom_window(action, ctx),
+            A::UsualLayout => self.memory.settings.layout = Layout::default(),
+            A::ShowHints => self.memory.settings.hints_read.clear(),
             A::Shortcuts => self.show_dialog(Dialog::Shortcuts),
             A::WhatsNew => self.show_dialog(Dialog::WhatsNew),
             A::About => self.show_dialog(Dialog::About),

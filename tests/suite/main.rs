@@ -29,6 +29,8 @@
 //! | `gui_fluid` | the window rests while nothing happens, and shows a change in the next frame |
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
+//! | `gui_reach` | every control of the window has a name and is reached with the keyboard, at every size and scale |
+//! | `gui_settings` | what is remembered from one run to the next, keys, areas, hints, recent files |
 //! | `gui_start` | the real program where no window can open |
 //! | `gui_two` | two clips in the window: the blend lane, its pictures and forms, loops |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
@@ -71,7 +73,11 @@ mod gui_fluid;
 #[cfg(feature = "gui-tests")]
 mod gui_paint;
 #[cfg(feature = "gui-tests")]
+mod gui_reach;
+#[cfg(feature = "gui-tests")]
 mod gui_screen;
+#[cfg(feature = "gui-tests")]
+mod gui_settings;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
 #[cfg(feature = "gui-tests")]

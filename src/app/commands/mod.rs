@@ -14,6 +14,7 @@ use super::view_models::{SnagFilter, SnagOrder, TimeWindow};
 mod action;
 mod blend;
 mod curves;
+mod settings;
 mod situation;
 mod table;
 mod time;
@@ -21,6 +22,7 @@ mod time;
 pub use action::{Action, Menu};
 pub use blend::BlendCommand;
 pub use curves::{CurveAction, CurveCommand};
+pub use settings::SettingsCommand;
 pub use situation::Situation;
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
 pub(crate) use time::LEARNED;
@@ -96,6 +98,8 @@ pub enum Command {
     DiscardAndGoOn,
     /// Stop a job.
     Cancel(Slot),
+    /// Change what is remembered from one run to the next.
+    Settings(SettingsCommand),
     /// Choices of time and joints, the turn map, the snag list.
     Time(TimeCommand),
     /// About blends and loops.
