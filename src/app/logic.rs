@@ -200,6 +200,7 @@ impl Window {
             A::Larger | A::Smaller | A::UsualSize => self.zoom_window(action, ctx),
             A::UsualLayout => self.memory.settings.layout = Layout::default(),
             A::ShowHints => self.memory.settings.hints_read.clear(),
+            A::Explain => self.show_dialog(Dialog::Help),
             A::Shortcuts => self.show_dialog(Dialog::Shortcuts),
             A::WhatsNew => self.show_dialog(Dialog::WhatsNew),
             A::About => self.show_dialog(Dialog::About),

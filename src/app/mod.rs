@@ -8,6 +8,7 @@
 //! | `bench`, `session` | what is open and worked out; what is looked at |
 //! | `blend_state` | the blend that is looked at |
 //! | `settings` | what is remembered from one run to the next: keys, sizes of areas, hints |
+//! | `help` | what each snag kind and each pass is, with pictures made from tiny clips |
 //! | `jobs`, `file_picker` | work on other threads |
 //! | `view_models` | what panels show, as plain data without egui |
 //! | `panels`, `widgets`, `pictures`, `theme` | how it looks |
@@ -18,6 +19,7 @@ pub mod blend_state;
 pub mod commands;
 mod curve_hand;
 mod file_picker;
+pub mod help;
 mod jobs;
 mod logic;
 pub mod paint;

@@ -90,6 +90,7 @@ pub enum Action {
     RemoveMarker,
     PreviousMarker,
     NextMarker,
+    Explain,
     ShowHints,
     Shortcuts,
     WhatsNew,

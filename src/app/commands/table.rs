@@ -672,6 +672,14 @@ pub const TABLE: &[Entry] = &{
         ),
         entry(
             H,
+            A::Explain,
+            "Snags and passes",
+            "What each kind of snag and each pass is, with a picture",
+            Some(shift(Key::F1)),
+            ALWAYS,
+        ),
+        entry(
+            H,
             A::ShowHints,
             "Show hints again",
             "The hint in each area, as on the first day",
@@ -765,6 +773,7 @@ mod tests {
             A::Smaller,
             A::UsualSize,
             A::UsualLayout,
+            A::Explain,
             A::ShowHints,
             A::Shortcuts,
             A::WhatsNew,
