@@ -103,7 +103,7 @@ impl Window {
                 }
             }
             Command::Cancel(slot) => self.stop(slot),
-            Command::Settings(command) => self.run_settings(command, ctx),
+            Command::Settings(command) => self.run_settings(&command, ctx),
             Command::Time(command) => self.run_time(command),
             Command::Blend(command) => self.run_blend(command),
         }

@@ -45,6 +45,8 @@ pub use window::{Start, Window};
 /// # Errors
 /// As [`run`].
 pub fn open(start: Start) -> Result<(), StartError> {
+    // Without a display nothing of the user's is touched.
+    runners::need_display()?;
     let file = SettingsFile::of_user();
     let read = file.as_ref().map(SettingsFile::read);
     let place = read.iter().flatten().map(|settings| settings.window).next().unwrap_or_default();

@@ -97,8 +97,8 @@ fn clip(frames: usize) -> Clip {
 /// A file with that clip, as if it had been read.
 fn source(frames: usize) -> Arc<Source> {
     let short = bvh::from_clip(&clip(2)).0;
-    let mut source = open_bytes(Path::new("long.bvh"), short.into(), &OpenOptions::default())
-        .expect("what was written reads");
+    let mut source =
+        open_bytes(Path::new("long.bvh"), short, &OpenOptions::default()).expect("what was written reads");
     source.clips = vec![Arc::new(clip(frames))];
     Arc::new(source)
 }
@@ -248,7 +248,7 @@ fn main() {
                 );
                 match known.iter().find(|(name, _)| *name == what) {
                     Some((_, short)) => {
-                        println!("   {:.2} of the time for {} frames", ms(median.sum()) / short, lengths[0])
+                        println!("   {:.2} of the time for {} frames", ms(median.sum()) / short, lengths[0]);
                     }
                     None => known.push((what.clone(), ms(median.sum()))),
                 }

@@ -64,7 +64,7 @@ impl Desk {
     fn check_tab(&mut self, state: &str) {
         let mut reached = BTreeSet::new();
         let count = self.focusable().len();
-        for _ in 0..3 * count + 10 {
+        for _ in 0..count + count / 4 + 10 {
             self.0.key_press(Key::Tab);
             self.0.step();
             self.0.step();

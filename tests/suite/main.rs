@@ -9,6 +9,7 @@
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
 //! | `commands` | the real program: what it prints, how it ends, what it writes |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
+//! | `display` | a display without a screen and the real program on it; no tests of its own |
 //! | `exchange` | files as a whole: every outside file opens, comes back, and goes into every other format |
 //! | `formats` | files as the world has them, made by a writer of its own: many clips and skins, every encoding, odd BVH |
 //! | `fuzz` | the fuzz targets without an engine, a second each or as long as asked |
@@ -30,6 +31,7 @@
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
 //! | `gui_reach` | every control of the window has a name and is reached with the keyboard, at every size and scale |
+//! | `gui_session` | a whole clean-up of a captured dance in a real window, from opening to the exported file |
 //! | `gui_settings` | what is remembered from one run to the next, keys, areas, hints, recent files |
 //! | `gui_start` | the real program where no window can open |
 //! | `gui_two` | two clips in the window: the blend lane, its pictures and forms, loops |
@@ -63,6 +65,8 @@ mod gltf_forms;
 mod gltf_write;
 mod ground_faults;
 
+#[cfg(feature = "gui-tests")]
+mod display;
 mod golden;
 #[cfg(feature = "gui-tests")]
 mod gui_curves;
@@ -76,6 +80,8 @@ mod gui_paint;
 mod gui_reach;
 #[cfg(feature = "gui-tests")]
 mod gui_screen;
+#[cfg(feature = "gui-tests")]
+mod gui_session;
 #[cfg(feature = "gui-tests")]
 mod gui_settings;
 #[cfg(feature = "gui-tests")]

@@ -127,9 +127,9 @@ impl Window {
         }
     }
 
-    pub(super) fn run_settings(&mut self, command: SettingsCommand, ctx: &Context) {
+    pub(super) fn run_settings(&mut self, command: &SettingsCommand, ctx: &Context) {
         let own = &mut self.memory.settings;
-        match command {
+        match *command {
             SettingsCommand::Divide(divider, share) => own.layout.set(divider, share),
             SettingsCommand::ReadHint(hint) => {
                 own.hints_read.insert(hint);

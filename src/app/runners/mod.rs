@@ -10,6 +10,7 @@ mod glow;
 mod start;
 
 pub use start::StartError;
+pub(super) use start::need_display;
 
 use crate::app::Screen;
 use crate::app::settings::Placement;
@@ -36,7 +37,7 @@ pub fn run_at(
     screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>,
 ) -> Result<(), StartError> {
     let choice = Choice::from_environment()?;
-    start::need_display()?;
+    need_display()?;
     let progress = Progress::default();
     match choice {
         Choice::Cpu => start::guard(&progress, || cpu::run(place, screen, &progress)),

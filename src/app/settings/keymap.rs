@@ -158,13 +158,12 @@ pub fn parse_keys(text: &str) -> Option<KeyboardShortcut> {
             Some((word, more)) if !word.is_empty() && !more.is_empty() => (word, more),
             _ => return Some(KeyboardShortcut::new(modifiers, Key::from_name(rest)?)),
         };
-        modifiers = modifiers
-            | match word {
-                "Ctrl" => Modifiers::COMMAND,
-                "Alt" => Modifiers::ALT,
-                "Shift" => Modifiers::SHIFT,
-                _ => return None,
-            };
+        modifiers |= match word {
+            "Ctrl" => Modifiers::COMMAND,
+            "Alt" => Modifiers::ALT,
+            "Shift" => Modifiers::SHIFT,
+            _ => return None,
+        };
         rest = more;
     }
 }

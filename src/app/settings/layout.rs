@@ -194,7 +194,7 @@ mod tests {
                 let areas = layout.areas(bounds);
                 let all =
                     [areas.skeleton, areas.joint_sheet, areas.map, areas.curves, areas.snags, areas.passes];
-                let sum: f32 = all.iter().map(|area| area.area()).sum();
+                let sum: f32 = all.iter().map(Rect::area).sum();
                 assert!((sum - bounds.area()).abs() < 1.0, "{size} {share:?}: {sum}");
                 if size.x > 1000.0 {
                     let least =

@@ -113,7 +113,7 @@ fn take_keys(ui: &Ui, form: &mut Form, scope: &mut Scope<'_>) {
         (held.shift, egui::Modifiers::SHIFT),
     ] {
         if is_held {
-            modifiers = modifiers | modifier;
+            modifiers |= modifier;
         }
     }
     let keys = KeyboardShortcut::new(modifiers, key);
