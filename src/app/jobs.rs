@@ -35,6 +35,8 @@ pub enum Slot {
     Carry,
     /// Carrying a clip over and measuring it.
     CarryMeasure,
+    /// Writing the settings.
+    Settings,
 }
 
 impl Slot {
@@ -47,7 +49,7 @@ impl Slot {
             Self::Limits => "Working out limits",
             Self::Heat => "Drawing the turn map",
             Self::Curves => "Sampling curves",
-            Self::Save => "Saving",
+            Self::Save | Self::Settings => "Saving",
             Self::Export => "Exporting",
             Self::Blend => "Comparing clips",
             Self::Carry => "Mapping joints",
@@ -57,7 +59,10 @@ impl Slot {
 
     /// Short work that the eye waits for must not stand behind long work.
     const fn is_quick(self) -> bool {
-        matches!(self, Self::Evaluate | Self::Curves | Self::Save | Self::Blend | Self::Carry)
+        matches!(
+            self,
+            Self::Evaluate | Self::Curves | Self::Save | Self::Blend | Self::Carry | Self::Settings
+        )
     }
 }
 

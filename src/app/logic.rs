@@ -2,14 +2,15 @@
 
 mod answers;
 mod blend;
-mod curves;
 mod carry;
+mod curves;
 mod files;
 mod limits;
 mod markers;
 mod orders;
 mod passes;
 mod playing;
+mod settings;
 mod snags;
 mod space;
 mod time;
@@ -19,6 +20,7 @@ use egui::Context;
 use super::commands::{Action, Command, CurveAction, Offer};
 use super::panels::{Dialog, Form, Message, Then};
 use super::session::Fit;
+use super::settings::Layout;
 use super::view_models::{CurveView, HeatKind, TimeChoice};
 use super::window::Window;
 use crate::raster::{Lens, StraightView};
@@ -29,6 +31,7 @@ use limits::LimitsFrom;
 pub(crate) use answers::Answer;
 pub(crate) use carry::retarget_in;
 pub(crate) use orders::Asked;
+pub(crate) use settings::Memory;
 
 impl Window {
     /// Does everything that was asked for.
@@ -104,6 +107,7 @@ impl Window {
                 }
             }
             Command::Cancel(slot) => self.stop(slot),
+            Command::Settings(command) => self.run_settings(&command, ctx),
             Command::Time(command) => self.run_time(command),
             Command::Blend(command) => self.run_blend(command),
             Command::Carry(command) => self.run_carry(command),
@@ -203,6 +207,10 @@ impl Window {
             A::RenameMarker => self.ask_marker_name_here(),
             A::RemoveMarker => self.remove_marker_here(),
             A::PreviousMarker | A::NextMarker => self.step_marker(action == A::NextMarker),
+            A::Larger | A::Smaller | A::UsualSize => self.zoom_window(action, ctx),
+            A::UsualLayout => self.memory.settings.layout = Layout::default(),
+            A::ShowHints => self.memory.settings.hints_read.clear(),
+            A::Explain => self.show_dialog(Dialog::Help),
             A::Shortcuts => self.show_dialog(Dialog::Shortcuts),
             A::WhatsNew => self.show_dialog(Dialog::WhatsNew),
             A::About => self.show_dialog(Dialog::About),

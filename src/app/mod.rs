@@ -7,6 +7,8 @@
 //! | `commands` | everything a person can ask for, in one table |
 //! | `bench`, `session` | what is open and worked out; what is looked at |
 //! | `blend_state` | the blend that is looked at |
+//! | `settings` | what is remembered from one run to the next: keys, sizes of areas, hints |
+//! | `help` | what each snag kind and each pass is, with pictures made from tiny clips |
 //! | `jobs`, `file_picker` | work on other threads |
 //! | `view_models` | what panels show, as plain data without egui |
 //! | `panels`, `widgets`, `pictures`, `theme` | how it looks |
@@ -18,6 +20,7 @@ pub mod carry_state;
 pub mod commands;
 mod curve_hand;
 mod file_picker;
+pub mod help;
 mod jobs;
 mod logic;
 pub mod paint;
@@ -26,6 +29,7 @@ mod pictures;
 pub mod runners;
 mod screen;
 pub mod session;
+pub mod settings;
 mod theme;
 pub mod view_models;
 mod widgets;
@@ -34,6 +38,7 @@ mod window;
 pub use runners::StartError;
 pub use runners::run;
 pub use screen::Screen;
+use settings::SettingsFile;
 pub use window::{Start, Window};
 
 /// Opens the window and returns when it is closed.
@@ -41,5 +46,16 @@ pub use window::{Start, Window};
 /// # Errors
 /// As [`run`].
 pub fn open(start: Start) -> Result<(), StartError> {
-    run(|ctx| Box::new(Window::new(ctx, start)))
+    // Without a display nothing of the user's is touched.
+    runners::need_display()?;
+    let file = SettingsFile::of_user();
+    let read = file.as_ref().map(SettingsFile::read);
+    let place = read.iter().flatten().map(|settings| settings.window).next().unwrap_or_default();
+    runners::run_at(place, |ctx| {
+        let mut window = Window::new(ctx, start);
+        if let (Some(file), Some(read)) = (file, read) {
+            window.remember(ctx, file, read);
+        }
+        Box::new(window)
+    })
 }

@@ -14,7 +14,8 @@ use crate::skeleton::{LocalPose, Skeleton};
 use super::panels::{CurvePress, DistanceKey};
 use super::session::{Disc, SpaceHabits};
 use super::view_models::{
-    CarryEye, Drag, FaintFigure, FigureView, HandTurns, HeatMap, MapRow, Memo, Stage, Swept, TimeWindow, Trail,
+    CarryEye, Drag, FaintFigure, FigureView, HandTurns, HeatMap, MapRow, Memo, Stage, Swept, TimeWindow,
+    Trail,
 };
 
 /// A texture and the key of what is on it.

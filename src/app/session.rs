@@ -109,9 +109,6 @@ pub struct Session {
     pub curve_view: CurveView,
     /// How the curves are set, and what is chosen on them.
     pub curves: CurveHabits,
-    /// Seconds from a soft push to where nothing is left of it, to either side. One number for all that push: the discs of
-    /// the skeleton view and the curves.
-    pub falloff_secs: f64,
     /// What the turn map shows.
     pub heat_kind: HeatKind,
     /// Whether its hottest row is on top.
@@ -161,7 +158,6 @@ impl Default for Session {
             choice: TimeChoice::default(),
             curve_view: CurveView::PlaneAngles,
             curves: CurveHabits::default(),
-            falloff_secs: 0.4,
             heat_kind: HeatKind::TurnRate,
             worst_first: false,
             space: SpaceHabits::default(),
@@ -213,7 +209,6 @@ impl Session {
             },
             curve_view: self.curve_view,
             curves: self.curves.without_choice(),
-            falloff_secs: self.falloff_secs,
             heat_kind: self.heat_kind,
             worst_first: self.worst_first,
             space: self.space.clone(),

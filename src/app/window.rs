@@ -1,20 +1,22 @@
 //! The window as one screen: its state, and one frame of it.
 
 use std::path::PathBuf;
+use std::sync::Arc;
 use std::time::Duration;
 
-use egui::{Context, Event, Key, KeyboardShortcut, Modifiers, Ui};
+use egui::{Context, Event, Key, Ui};
 
-use crate::exchange::ClipAddress;
+use crate::exchange::{ClipAddress, Source};
 
 use super::Screen;
-use super::bench::Bench;
-use super::commands::{Action, Command, CurveAction, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
+use super::bench::{Bench, Project};
+use super::commands::{Action, Command, CurveAction, HOLD_FOR_SOURCE};
 use super::file_picker::FilePicker;
-use super::jobs::Jobs;
-use super::logic::{Answer, Asked};
+use super::jobs::{Jobs, Slot};
+use super::logic::{Answer, Asked, Memory};
 use super::panels::{self, Dialog, Form, Message, Scope, Then};
 use super::pictures::Pictures;
+use super::settings::Keymap;
 use super::theme::{self, Look};
 
 /// What the window opens with.
@@ -59,6 +61,7 @@ pub struct Window {
     pub(super) after_save: Option<Then>,
     pub(super) next_serial: u64,
     pub(super) is_light: bool,
+    pub(super) memory: Memory,
     pub(super) should_close: bool,
     last_time: Option<f64>,
 }
@@ -80,6 +83,9 @@ impl Window {
 
     fn with_jobs(ctx: &Context, jobs: Jobs<Answer>, start: Start) -> Self {
         theme::install(ctx);
+        Keymap::default().install(ctx);
+        // The menu has entries for it, with a range of its own.
+        ctx.options_mut(|options| options.zoom_with_keyboard = false);
         ctx.set_theme(egui::ThemePreference::Dark);
         let mut window = Self {
             bench: Bench::default(),
@@ -94,6 +100,7 @@ impl Window {
             after_save: None,
             next_serial: 1,
             is_light: false,
+            memory: Memory::default(),
             should_close: false,
             last_time: None,
         };
@@ -103,6 +110,13 @@ impl Window {
             Start::Files(addresses) => window.open_addresses(addresses),
         }
         window
+    }
+
+    /// Shows files that are open already, as if they had been read: a new document with work on each of their clips.
+    pub fn show_sources(&mut self, sources: Vec<Arc<Source>>) {
+        let project = Project::of_sources(self.take_serial(), sources);
+        self.show_project(project, 0);
+        self.order_work();
     }
 
     /// What is open and looked at.
@@ -122,7 +136,7 @@ impl Window {
 
     /// Whether a search, an evaluation or another job is on its way.
     pub fn is_busy(&self) -> bool {
-        self.jobs.running().next().is_some()
+        self.jobs.running().any(|(slot, _)| slot != Slot::Settings)
     }
 
     /// Files dropped onto the window.
@@ -150,14 +164,10 @@ impl Window {
         }
         let is_typing = ui.ctx().text_edit_focused();
         let has_focus = ui.ctx().memory(|memory| memory.focused().is_some());
-        let own = TABLE.iter().filter_map(|entry| Some((entry.shortcut?, entry.action)));
-        let mut all: Vec<(KeyboardShortcut, Action)> = own.chain(MORE_KEYS.iter().copied()).collect();
-        // Ctrl+Shift+Z must be tried before Ctrl+Z, which would take it as well.
-        all.sort_by_key(|(keys, _)| std::cmp::Reverse(modifier_count(keys.modifiers)));
         if !is_typing {
             self.take_clipboard_keys(ui);
         }
-        for (keys, action) in all {
+        for (keys, action) in Keymap::of(ui.ctx()).all() {
             let is_plain = keys.modifiers.is_none() && !is_function_key(keys.logical_key);
             if (is_plain && has_focus) || (is_typing && !is_function_key(keys.logical_key)) {
                 continue;
@@ -197,13 +207,6 @@ impl Window {
     }
 }
 
-fn modifier_count(modifiers: Modifiers) -> usize {
-    [modifiers.alt, modifiers.ctrl, modifiers.shift, modifiers.mac_cmd, modifiers.command]
-        .into_iter()
-        .filter(|&on| on)
-        .count()
-}
-
 fn is_function_key(key: Key) -> bool {
     key.name().len() > 1 && key.name().starts_with('F') && key.name()[1..].chars().all(|c| c.is_ascii_digit())
 }
@@ -214,6 +217,7 @@ impl Screen for Window {
         self.run_commands(ctx);
         self.order_work();
         self.settle_curves();
+        self.keep_settings(ctx);
     }
 
     fn ui(&mut self, ui: &mut Ui) {
@@ -221,13 +225,14 @@ impl Screen for Window {
         self.take_keys(ui);
         self.advance_play(ui);
         let hovered_before = self.pictures.hovered;
-        let running: Vec<_> = self.jobs.running().collect();
-        let is_finding = self.jobs.is_running(super::jobs::Slot::Survey);
+        let running: Vec<_> = self.jobs.running().filter(|(slot, _)| *slot != Slot::Settings).collect();
+        let is_finding = self.jobs.is_running(Slot::Survey);
         let now = self.bench.situation(is_finding, self.is_light);
         let (states, rows) = (self.bench.snag_states(), self.bench.snag_rows());
         let mut out = std::mem::take(&mut self.commands);
         let mut scope = Scope {
             bench: &self.bench,
+            settings: &self.memory.settings,
             now: &now,
             rows,
             states,
@@ -250,6 +255,7 @@ impl Screen for Window {
                 .frame(bare)
                 .exact_size(66.0)
                 .show(ui, |ui| panels::transport_ui(ui, &mut scope));
+            panels::transport_hint_ui(ui, &mut scope);
             egui::CentralPanel::no_frame().show(ui, |ui| panels::bench_ui(ui, &mut scope));
         } else {
             egui::CentralPanel::no_frame().show(ui, |ui| panels::welcome_ui(ui, &mut scope));
@@ -272,7 +278,7 @@ impl Screen for Window {
         if self.pictures.hovered != hovered_before {
             ui.ctx().request_repaint();
         }
-        if self.jobs.running().next().is_some() {
+        if !running.is_empty() {
             // The progress bar moves on though nobody touches anything.
             ui.ctx().request_repaint_after(Duration::from_millis(100));
         }
@@ -284,6 +290,7 @@ impl Screen for Window {
             self.dialog = Some(Dialog::Unsaved(Then::Quit));
             return false;
         }
+        self.write_settings();
         true
     }
 

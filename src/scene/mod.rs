@@ -17,6 +17,5 @@ pub use marker::{Marker, MarkerChange};
 pub use pass::{
     BlendForm, BlendPass, ClipRef, Closing, KeysPass, LimitsPass, LoopPass, MendPass, Need, NoOthers, Others,
     Outcome, Pass, PassError, PassId, PassKind, PassStep, PushPass, ReducePass, ResamplePass, RetargetPass,
-    RetargetSetting,
-    Scope, SmoothPass, SnagMark,
+    RetargetSetting, Scope, SmoothPass, SnagMark,
 };

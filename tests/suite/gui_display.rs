@@ -1,138 +1,16 @@
 //! The real program in a real window: an X display without a screen, driven by mouse and keyboard.
 
 use std::cell::RefCell;
-use std::io::{BufRead as _, BufReader};
-use std::path::Path;
-use std::process::{Child, Command, ExitStatus, Stdio};
-use std::time::{Duration, Instant};
+use std::time::Duration;
 
+use turnwright::app::settings::{Settings, SettingsFile};
 use turnwright::exchange::disk;
 
-/// A process that is stopped when the test is over, however it ends.
-struct Running(Child);
-
-impl Drop for Running {
-    fn drop(&mut self) {
-        let _ = self.0.kill();
-        let _ = self.0.wait();
-    }
-}
-
-/// An X display of its own, and its name.
-fn display() -> Option<(Running, String)> {
-    let mut server = Command::new("Xvfb")
-        // Without -noreset the server starts anew when its last client leaves, and drops whoever is just connecting:
-        // each look by a short-lived tool would be a chance for the program to lose its display.
-        .args(["-displayfd", "1", "-screen", "0", "1440x900x24", "-nolisten", "tcp", "-noreset"])
-        .stdout(Stdio::piped())
-        .stderr(Stdio::null())
-        .spawn()
-        .ok()?;
-    let output = server.stdout.take()?;
-    let server = Running(server);
-    let mut line = String::new();
-    BufReader::new(output).read_line(&mut line).ok()?;
-    let number = line.trim();
-    (!number.is_empty()).then(|| (server, format!(":{number}")))
-}
-
-struct Desk {
-    display: String,
-    /// The program under test, once it runs: waiting for one that has ended is no use.
-    program: RefCell<Option<Running>>,
-}
-
-impl Desk {
-    /// Runs `xdotool` and gives what it says.
-    fn tool(&self, words: &[&str]) -> String {
-        let output =
-            Command::new("xdotool").args(words).env("DISPLAY", &self.display).output().expect("xdotool runs");
-        String::from_utf8_lossy(&output.stdout).trim().to_owned()
-    }
-
-    /// Waits until the display has a window whose title says so; its id.
-    #[track_caller]
-    fn window(&self, title: &str) -> String {
-        self.wait(title, || {
-            let found = self.tool(&["search", "--name", title]);
-            found.lines().next().map(str::to_owned)
-        })
-    }
-
-    /// Gives the window the keyboard and sees that it has it. A window that is not yet shown does not take it.
-    #[track_caller]
-    fn focus(&self, window: &str) {
-        self.wait("keyboard focus", || {
-            self.tool(&["windowfocus", window]);
-            (self.tool(&["getwindowfocus", "-f"]) == window).then_some(())
-        });
-    }
-
-    /// Presses a key as a keyboard does: whoever has the focus gets it.
-    fn press(&self, key: &str) {
-        self.tool(&["key", key]);
-    }
-
-    /// Waits for something; a busy machine may take its time.
-    #[track_caller]
-    fn wait<T>(&self, what: &str, mut look: impl FnMut() -> Option<T>) -> T {
-        let start = Instant::now();
-        loop {
-            if let Some(found) = look() {
-                return found;
-            }
-            let ended = self.ended();
-            assert!(ended.is_none(), "no `{what}`: the program ended with {ended:?}");
-            if start.elapsed() > Duration::from_mins(2) {
-                let shown = self.tool(&["search", "--name", ".", "getwindowname", "%@"]);
-                panic!("no `{what}` on display {}; windows there: {shown:?}", self.display);
-            }
-            std::thread::sleep(Duration::from_millis(150));
-        }
-    }
-
-    /// How the program ended, if it has.
-    fn ended(&self) -> Option<ExitStatus> {
-        self.program
-            .borrow_mut()
-            .as_mut()
-            .and_then(|program| program.0.try_wait().expect("a child can be asked"))
-    }
-
-    /// What is on the display: red, green, blue of each pixel.
-    fn picture(&self) -> Vec<[u8; 3]> {
-        let output = Command::new("import")
-            .args(["-window", "root", "-depth", "8", "png:-"])
-            .env("DISPLAY", &self.display)
-            .output()
-            .expect("import runs");
-        let folder = Path::new(env!("CARGO_TARGET_TMPDIR"));
-        disk::write(&folder.join("window.png"), &output.stdout).expect("the picture is kept");
-        let mut decoder = png::Decoder::new(std::io::Cursor::new(&output.stdout));
-        decoder.set_transformations(png::Transformations::EXPAND | png::Transformations::STRIP_16);
-        let mut reader = decoder.read_info().expect("import writes PNG");
-        let mut bytes = vec![0; reader.output_buffer_size().expect("a small picture")];
-        let info = reader.next_frame(&mut bytes).expect("import writes PNG");
-        let samples = info.color_type.samples();
-        bytes[..info.buffer_size()]
-            .chunks_exact(samples)
-            .map(|pixel| [pixel[0], pixel[1], pixel[2]])
-            .collect()
-    }
-}
-
-fn count(picture: &[[u8; 3]], wanted: impl Fn([u8; 3]) -> bool) -> usize {
-    picture.iter().filter(|&&pixel| wanted(pixel)).count()
-}
+use crate::display::{Desk, count, display, missing_tool};
 
 #[test]
 fn a_clip_is_cleaned_up_with_mouse_and_keyboard() {
-    let missing = ["Xvfb", "xdotool", "import"].into_iter().find(|tool| {
-        Command::new(tool).arg("-version").stdout(Stdio::null()).stderr(Stdio::null()).status().is_err()
-    });
-    if let Some(tool) = missing {
-        assert!(std::env::var_os("CI").is_none(), "CI needs {tool}");
-        println!("skipped: {tool} is not on this machine");
+    if missing_tool().is_some() {
         return;
     }
     let (_server, display) = display().expect("a display starts");
@@ -141,15 +19,10 @@ fn a_clip_is_cleaned_up_with_mouse_and_keyboard() {
     let scene = turnwright::demo::SCENES[0];
     let clip = folder.path().join(scene.clip_file);
     disk::write(&clip, scene.clip_bytes).unwrap();
-    let program = Command::new(env!("CARGO_BIN_EXE_turnwright"))
-        .arg(&clip)
-        .env("DISPLAY", &desk.display)
-        .env("TURNWRIGHT_RUNNER", "cpu")
-        .env_remove("WAYLAND_DISPLAY")
-        .env_remove("WAYLAND_SOCKET")
-        .spawn()
-        .unwrap();
-    desk.program.replace(Some(Running(program)));
+    // Nothing of whoever runs this is read or written.
+    let settings = folder.path().join("settings.ron");
+    SettingsFile::at(&settings).write(&Settings::without_hints()).unwrap();
+    desk.start(&[&clip], &settings);
     let window = desk.window("deckhand.bvh - Turnwright");
     desk.focus(&window);
     desk.tool(&["windowmove", &window, "0", "0"]);
@@ -195,8 +68,7 @@ fn a_clip_is_cleaned_up_with_mouse_and_keyboard() {
     });
     desk.window("^deckhand.ron - Turnwright");
     desk.press("ctrl+q");
-    let mut program = desk.program.take().expect("it was started");
-    let status = desk.wait("the end of the program", || program.0.try_wait().unwrap());
+    let status = desk.end();
     assert!(status.success(), "{status}");
     assert_eq!(disk::read(&clip).unwrap(), scene.clip_bytes, "the source is never changed");
 }

@@ -9,6 +9,7 @@
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
 //! | `commands` | the real program: what it prints, how it ends, what it writes |
 //! | `demo` | the demo scenes are what their generator makes, and their planted faults are found |
+//! | `display` | a display without a screen and the real program on it; no tests of its own |
 //! | `exchange` | files as a whole: every outside file opens, comes back, and goes into every other format |
 //! | `formats` | files as the world has them, made by a writer of its own: many clips and skins, every encoding, odd BVH |
 //! | `fuzz` | the fuzz targets without an engine, a second each or as long as asked |
@@ -28,9 +29,13 @@
 //! | `gui_curves` | editing on the rotation curves, by pointer and keyboard; what is asserted is the document |
 //! | `gui_carry` | the retarget sheet, driven by accessible labels; what is asserted is the document |
 //! | `gui_display` | the real program in a real window under Xvfb, driven by mouse and keyboard |
+//! | `gui_fluid` | the window rests while nothing happens, and shows a change in the next frame |
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
 //! | `gui_space` | the skeleton view driven by pointer and keys: discs, tips, limits; asserted are the turns of the result |
+//! | `gui_reach` | every control of the window has a name and is reached with the keyboard, at every size and scale |
+//! | `gui_session` | a whole clean-up of a captured dance in a real window, from opening to the exported file |
+//! | `gui_settings` | what is remembered from one run to the next, keys, areas, hints, recent files |
 //! | `gui_start` | the real program where no window can open |
 //! | `gui_two` | two clips in the window: the blend lane, its pictures and forms, loops |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
@@ -64,6 +69,8 @@ mod gltf_forms;
 mod gltf_write;
 mod ground_faults;
 
+#[cfg(feature = "gui-tests")]
+mod display;
 mod golden;
 #[cfg(feature = "gui-tests")]
 mod gui_curves;
@@ -72,11 +79,19 @@ mod gui_carry;
 #[cfg(feature = "gui-tests")]
 mod gui_display;
 #[cfg(feature = "gui-tests")]
+mod gui_fluid;
+#[cfg(feature = "gui-tests")]
 mod gui_paint;
+#[cfg(feature = "gui-tests")]
+mod gui_reach;
 #[cfg(feature = "gui-tests")]
 mod gui_screen;
 #[cfg(feature = "gui-tests")]
 mod gui_space;
+#[cfg(feature = "gui-tests")]
+mod gui_session;
+#[cfg(feature = "gui-tests")]
+mod gui_settings;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
 #[cfg(feature = "gui-tests")]

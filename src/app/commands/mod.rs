@@ -13,8 +13,9 @@ use super::view_models::{SnagFilter, SnagOrder, TimeWindow};
 
 mod action;
 mod blend;
-mod curves;
 mod carry;
+mod curves;
+mod settings;
 mod situation;
 mod space;
 mod table;
@@ -22,8 +23,9 @@ mod time;
 
 pub use action::{Action, Menu};
 pub use blend::BlendCommand;
-pub use curves::{CurveAction, CurveCommand};
 pub use carry::{CarryCommand, CarrySheet};
+pub use curves::{CurveAction, CurveCommand};
+pub use settings::SettingsCommand;
 pub use situation::Situation;
 pub use space::{SpaceAction, SpaceCommand};
 pub use table::{Entry, HOLD_FOR_SOURCE, MORE_KEYS, TABLE};
@@ -100,6 +102,8 @@ pub enum Command {
     DiscardAndGoOn,
     /// Stop a job.
     Cancel(Slot),
+    /// Change what is remembered from one run to the next.
+    Settings(SettingsCommand),
     /// Choices of time and joints, the turn map, the snag list.
     Time(TimeCommand),
     /// About blends and loops.

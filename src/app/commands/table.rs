@@ -73,10 +73,6 @@ impl Entry {
     }
 }
 
-const fn ctrl_alt(key: Key) -> KeyboardShortcut {
-    KeyboardShortcut::new(Modifiers::COMMAND.plus(Modifiers::ALT), key)
-}
-
 const fn alt_shift(key: Key) -> KeyboardShortcut {
     KeyboardShortcut::new(Modifiers::ALT.plus(Modifiers::SHIFT), key)
 }
@@ -594,6 +590,32 @@ pub const TABLE: &[Entry] = &{
         .switch(|now| now.space.shows_names),
         entry(R, A::Space(O::Floor), "Show floor", "The grid below the figure", Some(alt(Key::G)), CLIP)
             .switch(|now| now.space.shows_floor),
+        entry(
+            V,
+            A::Larger,
+            "Larger",
+            "All words and marks a step larger, up to 300 %",
+            Some(ctrl(Key::Plus)),
+            ALWAYS,
+        )
+        .group(),
+        entry(
+            V,
+            A::Smaller,
+            "Smaller",
+            "All words and marks a step smaller, down to 100 %",
+            Some(ctrl(Key::Minus)),
+            ALWAYS,
+        ),
+        entry(
+            V,
+            A::UsualSize,
+            "Usual size",
+            "100 % of what the desktop asks for",
+            Some(ctrl(Key::Num0)),
+            ALWAYS,
+        ),
+        entry(V, A::UsualLayout, "Usual areas", "All areas as large as on the first day", None, ALWAYS),
         entry(S, A::FindAgain, "Find again", "Look for snags in the source anew", Some(plain(Key::F5)), CLIP),
         entry(S, A::StopFinding, "Stop finding", "Stop looking for snags", Some(shift(Key::F5)), |now| {
             now.is_finding
@@ -844,15 +866,41 @@ pub const TABLE: &[Entry] = &{
             Some(alt(Key::ArrowRight)),
             MARKERS,
         ),
-        entry(H, A::Shortcuts, "Shortcuts", "All actions and their keys", Some(plain(Key::F1)), ALWAYS),
+        entry(
+            H,
+            A::Explain,
+            "Snags and passes",
+            "What each kind of snag and each pass is, with a picture",
+            Some(shift(Key::F1)),
+            ALWAYS,
+        ),
+        entry(
+            H,
+            A::ShowHints,
+            "Show hints again",
+            "The hint in each area, as on the first day",
+            None,
+            ALWAYS,
+        ),
+        entry(
+            H,
+            A::Shortcuts,
+            "Shortcuts",
+            "All actions and their keys, which can be changed",
+            Some(plain(Key::F1)),
+            ALWAYS,
+        ),
         entry(H, A::WhatsNew, "What's new", "What has changed from version to version", None, ALWAYS),
         entry(H, A::About, "About Turnwright", "Version, licences and cautions", None, ALWAYS),
     ]
 };
 
 /// Keys that do the same as an entry's own shortcut.
-pub const MORE_KEYS: &[(KeyboardShortcut, Action)] =
-    &[(KeyboardShortcut::new(Modifiers::COMMAND, Key::Y), Action::Redo)];
+pub const MORE_KEYS: &[(KeyboardShortcut, Action)] = &[
+    (KeyboardShortcut::new(Modifiers::COMMAND, Key::Y), Action::Redo),
+    // On most keyboards + is the shifted =.
+    (KeyboardShortcut::new(Modifiers::COMMAND, Key::Equals), Action::Larger),
+];
 
 /// Held down, these show the source in place of the result.
 pub const HOLD_FOR_SOURCE: KeyboardShortcut = KeyboardShortcut::new(Modifiers::COMMAND, Key::B);
@@ -911,8 +959,22 @@ mod tests {
         let nothing = Situation::default();
         let offered: Vec<Action> =
             TABLE.iter().filter(|entry| (entry.is_available)(&nothing)).map(|entry| entry.action).collect();
-        let expected =
-            [A::Open, A::OpenPath, A::OpenDemo, A::Quit, A::Light, A::Shortcuts, A::WhatsNew, A::About];
+        let expected = [
+            A::Open,
+            A::OpenPath,
+            A::OpenDemo,
+            A::Quit,
+            A::Light,
+            A::Larger,
+            A::Smaller,
+            A::UsualSize,
+            A::UsualLayout,
+            A::Explain,
+            A::ShowHints,
+            A::Shortcuts,
+            A::WhatsNew,
+            A::About,
+        ];
         assert_eq!(offered, expected);
     }
 }

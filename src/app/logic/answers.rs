@@ -88,6 +88,8 @@ pub(crate) enum Answer {
     },
     /// Clips were written, or not.
     Exported(Result<Box<Exported>, String>),
+    /// Settings were written, or not.
+    SettingsKept(Result<(), String>),
     /// A source was found anew, or not.
     Relocated {
         /// For which project.
@@ -167,6 +169,7 @@ impl Window {
                 self.take_saved(serial, revision, &path, result, ctx);
             }
             Answer::Exported(result) => self.take_exported(result),
+            Answer::SettingsKept(result) => self.take_settings_kept(result),
             Answer::Relocated { serial, index, result } => self.take_relocated(serial, index, result),
             Answer::Blend(answer) => self.take_blend(answer),
             Answer::Carry(answer) => self.take_carry(answer),
@@ -232,6 +235,9 @@ impl Window {
             .filter(|source| !source.notes.is_empty())
             .map(|source| (file_name(&source.path), source.notes.iter().map(ToString::to_string).collect()))
             .collect();
+        for source in &sources {
+            self.memory.settings.remember_file(&source.path);
+        }
         let project = Project::of_sources(self.take_serial(), sources);
         let several = project.document().works.len() > 1 && wanted.is_none();
         self.show_project(project, wanted.unwrap_or(0));
@@ -239,12 +245,12 @@ impl Window {
         self.dialog = several.then_some(Dialog::ChooseClip);
     }
 
-    pub(super) fn take_serial(&mut self) -> u64 {
+    pub(in super::super) fn take_serial(&mut self) -> u64 {
         self.next_serial += 1;
         self.next_serial
     }
 
-    pub(super) fn show_project(&mut self, project: Project, work: usize) {
+    pub(in super::super) fn show_project(&mut self, project: Project, work: usize) {
         self.messages.retain(|message| message.level == Level::Done);
         self.dialog = None;
         self.bench.heat = None;
@@ -283,6 +289,7 @@ impl Window {
                 return;
             }
         };
+        self.memory.settings.remember_file(&opened.path);
         let project =
             Project::of_document(self.take_serial(), opened.document, opened.sources, Some(opened.path));
         let trouble: Vec<Message> = project
@@ -330,6 +337,7 @@ impl Window {
             }
             return;
         }
+        self.memory.settings.remember_file(path);
         let Some(project) = self.project_mut(serial) else { return };
         project.scene_path = Some(path.to_owned());
         if project.history.revision() == revision {

@@ -581,24 +581,18 @@ impl Window {
         session.choice.span_secs.or(session.playback.range.map(|(from, to)| [from, to]))
     }
 
-    fn add_pass(&mut self, step: PassStep) {
-        let work = self.bench.session.work;
-        self.bench.curve_hand.let_go();
-        self.edit(&Edit::AddPass { work, step, at: usize::MAX });
-    }
-
     fn smooth_range(&mut self) {
         let scope = self.range_scope();
         // It sets in over a period of what it takes out, or over a quarter of a short range.
         let hertz = self.bench.session.curves.smooth_hz;
         let fade_secs = scope.span_secs.map_or(0.0, |[from, to]| (1.0 / hertz).min((to - from) / 4.0));
         let scope = Scope { fade_secs, ..scope };
-        self.add_pass(SmoothPass { scope, ..SmoothPass::new(Smoothing::gaussian(hertz)) }.into());
+        self.put_pass(SmoothPass { scope, ..SmoothPass::new(Smoothing::gaussian(hertz)) }.into());
     }
 
     fn reduce_range(&mut self) {
         let bound_rad = self.bench.session.curves.reduce_deg.to_radians();
-        self.add_pass(ReducePass { scope: self.range_scope(), ..ReducePass::within(bound_rad) }.into());
+        self.put_pass(ReducePass { scope: self.range_scope(), ..ReducePass::within(bound_rad) }.into());
     }
 
     fn zoom_values(&mut self, factor: f64, up: f64) {

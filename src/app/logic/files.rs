@@ -69,7 +69,10 @@ impl Window {
             }
             Then::AskForPath => self.ask_for_path(),
             Then::OpenDemo => self.open_demo(),
-            Then::Quit => self.should_close = true,
+            Then::Quit => {
+                self.write_settings();
+                self.should_close = true;
+            }
         }
     }
 

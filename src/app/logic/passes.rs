@@ -61,7 +61,8 @@ impl Window {
         choice.scope(fade)
     }
 
-    fn put_pass(&mut self, step: PassStep) {
+    /// Adds a pass where it belongs and shows its form.
+    pub(super) fn put_pass(&mut self, step: PassStep) {
         let Some(own) = self.bench.work() else { return };
         let (at, id) = (place_for(&step, &own.passes), own.next_pass_id());
         let work = self.bench.session.work;

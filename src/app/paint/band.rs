@@ -28,4 +28,11 @@ impl<'p> Band<'p> {
         let start = (row - self.top) as usize * self.width;
         &mut self.pixels[start + left as usize..start + right as usize]
     }
+
+    /// The pixels `top..bottom` of one column; all of them must lie in [`Self::area`].
+    pub(super) fn column(&mut self, column: i64, top: i64, bottom: i64) -> impl Iterator<Item = &mut u32> {
+        let (first, count) =
+            ((top - self.top) as usize * self.width + column as usize, (bottom - top) as usize);
+        self.pixels[first..].iter_mut().step_by(self.width).take(count)
+    }
 }

@@ -23,7 +23,7 @@ pub struct Headless {
     pixels_per_point: f32,
     time_secs: f64,
     shapes: Vec<egui::epaint::ClippedShape>,
-    wants_more: bool,
+    repaint_delay: std::time::Duration,
 }
 
 impl std::fmt::Debug for Headless {
@@ -46,7 +46,7 @@ impl Headless {
             pixels_per_point,
             time_secs: 0.0,
             shapes: Vec::new(),
-            wants_more: true,
+            repaint_delay: std::time::Duration::ZERO,
         }
     }
 
@@ -73,17 +73,42 @@ impl Headless {
         self.painter.update_textures(&mut output.textures_delta);
         self.shapes = output.shapes;
         let root = output.viewport_output.get(&egui::ViewportId::ROOT);
-        self.wants_more = root.is_some_and(|root| root.repaint_delay.as_secs_f64() < FRAME_SECS);
+        self.repaint_delay = root.map_or(std::time::Duration::MAX, |root| root.repaint_delay);
     }
 
     /// Runs frames until the screen asks for no further one (a second of its time at most).
     pub fn settle(&mut self, screen: &mut dyn Screen) {
         for _ in 0..MAX_FRAMES {
             self.frame(screen, Vec::new());
-            if !self.wants_more {
+            if !self.wants_more() {
                 break;
             }
         }
+    }
+
+    /// Whether the screen asks for a further frame at once, as while it plays.
+    pub fn wants_more(&self) -> bool {
+        self.repaint_delay.as_secs_f64() < FRAME_SECS
+    }
+
+    /// How long after the last frame the screen wants the next one, if nothing happens before: for ever while it rests.
+    pub fn repaint_delay(&self) -> std::time::Duration {
+        self.repaint_delay
+    }
+
+    /// Makes meshes of the last frame, as the window does before it draws it. Gives none when called again for the
+    /// same frame.
+    pub fn tessellate(&mut self) -> Vec<egui::ClippedPrimitive> {
+        self.ctx.tessellate(std::mem::take(&mut self.shapes), self.pixels_per_point)
+    }
+
+    /// Draws meshes onto `pixels` (`0xAARRGGBB`, row by row), which get the size of the window.
+    pub fn paint(&mut self, primitives: &[egui::ClippedPrimitive], pixels: &mut Vec<u32>) {
+        let size = (self.size_points * self.pixels_per_point).round();
+        let (width, height) = (size.x as usize, size.y as usize);
+        pixels.resize(width * height, 0);
+        let canvas = Canvas { pixels, width, height };
+        self.painter.paint(canvas, self.pixels_per_point, primitives, background(&self.ctx));
     }
 
     /// How many triangles the last frame is made of: what a frame costs, whatever else the machine does.

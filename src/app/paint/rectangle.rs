@@ -15,6 +15,9 @@ use egui::epaint::Vertex;
 /// Farther than this from a texel's centre (in texels) a copy would show.
 const ON_CENTRE: f64 = 1.0 / 128.0;
 
+/// Up to so many pixels across, an even rectangle is filled column by column.
+const NARROW: i64 = 2;
+
 /// An upright rectangle that egui sent as two triangles.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Rectangle {
@@ -59,6 +62,13 @@ impl Rectangle {
             let down = Axis::still(self.from_uv.y, texture.height);
             let texel = texture.sample(across.at(0) as f32, down.at(0) as f32, texture.filter(0.0));
             let source = pixel::multiply(tint, texel);
+            if area.right - area.left <= NARROW && pixel::is_opaque(source) {
+                // A long curve is a row of such bars, one for each pixel across.
+                for column in area.left..area.right {
+                    band.column(column, area.top, area.bottom).for_each(|below| *below = source);
+                }
+                return;
+            }
             for row in area.top..area.bottom {
                 pixel::fill(band.run(row, area.left, area.right), source);
             }

@@ -3,7 +3,8 @@
 use egui::{Button, ComboBox, Ui};
 
 use super::super::bench::file_name;
-use super::super::commands::{Action, Command, Entry, Menu, Situation, TABLE};
+use super::super::commands::{Action, Command, Entry, Menu, SettingsCommand, Situation, TABLE};
+use super::super::settings::Keymap;
 use super::super::theme::Look;
 use super::super::view_models::counted;
 use super::super::widgets::{Icon, paint_icon};
@@ -23,10 +24,42 @@ pub(crate) fn menus_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
                         ui.separator();
                     }
                     entry_ui(ui, entry, scope.now, &look, scope.out);
+                    if entry.action == Action::OpenDemo {
+                        recent_ui(ui, scope);
+                    }
+                    if entry.action == Action::UsualSize {
+                        let percent = scope.settings.zoom * 100.0;
+                        let words = format!("       Now {percent:.0} %");
+                        ui.label(egui::RichText::new(words).size(12.0).color(look.faint));
+                    }
                 }
             });
         }
         ui.with_layout(egui::Layout::right_to_left(egui::Align::Center), |ui| open_ui(ui, scope));
+    });
+}
+
+/// The files that were open lately.
+fn recent_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let recent = &scope.settings.recent;
+    ui.add_enabled_ui(!recent.is_empty(), |ui| {
+        ui.menu_button("       Open recent", |ui| {
+            ui.set_min_width(280.0);
+            for path in recent {
+                let name = file_name(path);
+                let folder = path.parent().map(|folder| folder.display().to_string()).unwrap_or_default();
+                let response = ui.add(Button::new(&name).truncate()).on_hover_text(folder);
+                if response.clicked() {
+                    scope.out.push(Command::OpenFiles(vec![path.clone()]));
+                    ui.close();
+                }
+            }
+            ui.separator();
+            if ui.button("Forget these").clicked() {
+                scope.out.push(Command::Settings(SettingsCommand::ForgetRecent));
+                ui.close();
+            }
+        });
     });
 }
 
@@ -38,7 +71,7 @@ pub(super) fn entry_ui(ui: &mut Ui, entry: &Entry, now: &Situation, look: &Look,
     };
     // Room for the mark of a switch, so that all words begin at one edge.
     let mut button = Button::new(format!("       {label}"));
-    if let Some(shortcut) = entry.shortcut {
+    if let Some(shortcut) = Keymap::of(ui.ctx()).keys_of(entry.action) {
         button = button.shortcut_text(ui.ctx().format_shortcut(&shortcut));
     }
     let enabled = (entry.is_available)(now);

@@ -7,6 +7,7 @@ use crate::app::Screen;
 use crate::app::paint;
 use crate::app::paint::Canvas;
 use crate::app::paint::Painter;
+use crate::app::settings::Placement;
 use egui::ViewportCommand;
 use egui::ViewportId;
 use egui_winit::ActionRequested;
@@ -38,6 +39,7 @@ const HIDDEN_FRAME_TIME: Duration = Duration::from_millis(100);
 
 /// Opens the window and returns when it is closed.
 pub(super) fn run(
+    place: Placement,
     screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>,
     progress: &Progress,
 ) -> Result<(), StartError> {
@@ -45,6 +47,7 @@ pub(super) fn run(
         EventLoop::with_user_event().build().map_err(|_with_places_in_source| start::no_event_loop())?;
     let mut app = App {
         proxy: event_loop.create_proxy(),
+        place,
         screen: Some(screen),
         progress,
         running: None,
@@ -82,6 +85,7 @@ impl From<accesskit_winit::Event> for Wake {
 
 struct App<'p, F> {
     proxy: EventLoopProxy<Wake>,
+    place: Placement,
     /// Makes the screen, once.
     screen: Option<F>,
     progress: &'p Progress,
@@ -92,7 +96,7 @@ struct App<'p, F> {
 impl<F: FnOnce(&egui::Context) -> Box<dyn Screen>> ApplicationHandler<Wake> for App<'_, F> {
     fn resumed(&mut self, event_loop: &ActiveEventLoop) {
         let Some(screen) = self.screen.take() else { return };
-        match Running::new(event_loop, &self.proxy, screen, self.progress) {
+        match Running::new(event_loop, &self.proxy, self.place, screen, self.progress) {
             Ok(running) => self.running = Some(running),
             Err(failure) => {
                 self.failure = Some(failure);
@@ -163,12 +167,13 @@ impl Running {
     fn new(
         event_loop: &ActiveEventLoop,
         proxy: &EventLoopProxy<Wake>,
+        place: Placement,
         screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>,
         progress: &Progress,
     ) -> Result<Self, StartError> {
         let ctx = egui::Context::default();
         // Screen readers have to be told about the window before it is seen.
-        let builder = fit_to_monitor(super::window(), event_loop).with_visible(false);
+        let builder = fit_to_monitor(super::window(place), event_loop).with_visible(false);
         let window = egui_winit::create_window(&ctx, event_loop, &builder);
         let window =
             Arc::new(window.map_err(|_with_places_in_source| refused("the display gives no window"))?);
@@ -401,8 +406,18 @@ fn forward_repaints(ctx: &egui::Context, proxy: EventLoopProxy<Wake>) {
     });
 }
 
-/// Keeps the window inside a small monitor.
+/// Keeps the window inside a small monitor, and its corner on one that is still there.
 fn fit_to_monitor(builder: egui::ViewportBuilder, event_loop: &ActiveEventLoop) -> egui::ViewportBuilder {
+    let mut builder = builder;
+    builder.position = builder.position.filter(|at| {
+        event_loop.available_monitors().any(|monitor| {
+            let corner = monitor.position().to_logical::<f32>(monitor.scale_factor());
+            let size = monitor.size().to_logical::<f32>(monitor.scale_factor());
+            // The title bar must be within reach.
+            let (x, y) = (at.x - corner.x, at.y - corner.y);
+            (-200.0..size.width - 100.0).contains(&x) && (-10.0..size.height - 60.0).contains(&y)
+        })
+    });
     let monitor = event_loop.primary_monitor().or_else(|| event_loop.available_monitors().next());
     let (Some(monitor), Some(size)) = (monitor, builder.inner_size) else { return builder };
     let points = monitor.size().to_logical::<f32>(monitor.scale_factor());

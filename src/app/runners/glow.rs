@@ -5,6 +5,7 @@ use super::start;
 use super::start::Progress;
 use super::start::StartError;
 use crate::app::Screen;
+use crate::app::settings::Placement;
 use egui::ViewportCommand;
 
 /// What to do with a driver that runs on the processor.
@@ -18,12 +19,13 @@ pub(super) enum Software {
 
 /// Opens the window and returns when it is closed.
 pub(super) fn run(
+    place: Placement,
     screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>,
     progress: &Progress,
     software: Software,
 ) -> Result<(), StartError> {
     let options = eframe::NativeOptions {
-        viewport: super::window(),
+        viewport: super::window(place),
         renderer: eframe::Renderer::Glow,
         // Without it the picture is the painter's, pixel for pixel.
         dithering: false,

@@ -10,8 +10,10 @@ mod glow;
 mod start;
 
 pub use start::StartError;
+pub(super) use start::need_display;
 
 use crate::app::Screen;
+use crate::app::settings::Placement;
 use start::Choice;
 use start::Progress;
 
@@ -23,15 +25,28 @@ use start::Progress;
 /// When no window can be opened. After a failed try with the graphics driver this process may be replaced by a new one
 /// with the same arguments, so call this before reading input or starting work.
 pub fn run(screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>) -> Result<(), StartError> {
+    run_at(Placement::default(), screen)
+}
+
+/// As [`run`], with the window where it was before.
+///
+/// # Errors
+/// As [`run`].
+pub fn run_at(
+    place: Placement,
+    screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>,
+) -> Result<(), StartError> {
     let choice = Choice::from_environment()?;
-    start::need_display()?;
+    need_display()?;
     let progress = Progress::default();
     match choice {
-        Choice::Cpu => start::guard(&progress, || cpu::run(screen, &progress)),
-        Choice::Gl => start::guard(&progress, || glow::run(screen, &progress, glow::Software::Accept)),
-        Choice::Best if !device::is_present() => start::guard(&progress, || cpu::run(screen, &progress)),
+        Choice::Cpu => start::guard(&progress, || cpu::run(place, screen, &progress)),
+        Choice::Gl => start::guard(&progress, || glow::run(place, screen, &progress, glow::Software::Accept)),
+        Choice::Best if !device::is_present() => {
+            start::guard(&progress, || cpu::run(place, screen, &progress))
+        }
         Choice::Best => {
-            match start::guard(&progress, || glow::run(screen, &progress, glow::Software::Refuse)) {
+            match start::guard(&progress, || glow::run(place, screen, &progress, glow::Software::Refuse)) {
                 // One process can have one event loop only, and a failed driver leaves much behind.
                 Err(_) if !progress.has_screen() => start::restart_with_cpu(),
                 result => result,
@@ -41,11 +56,15 @@ pub fn run(screen: impl FnOnce(&egui::Context) -> Box<dyn Screen>) -> Result<(),
 }
 
 /// The window before its first frame, the same for both runners.
-fn window() -> egui::ViewportBuilder {
-    egui::ViewportBuilder::default()
+fn window(place: Placement) -> egui::ViewportBuilder {
+    let builder = match place.position {
+        Some(position) => egui::ViewportBuilder::default().with_position(position),
+        None => egui::ViewportBuilder::default(),
+    };
+    builder
         .with_title("Turnwright")
         .with_app_id("turnwright")
-        .with_inner_size([1440.0, 900.0])
+        .with_inner_size(place.size.unwrap_or([1440.0, 900.0]))
         .with_min_inner_size([640.0, 400.0])
         .with_icon(egui::IconData::default())
 }

@@ -82,7 +82,7 @@ fn display_name() -> Option<String> {
 }
 
 /// Refuses early where no display is named.
-pub(super) fn need_display() -> Result<(), StartError> {
+pub(in super::super) fn need_display() -> Result<(), StartError> {
     if DISPLAY_IS_NAMED && display_name().is_none() { Err(StartError::NoDisplay) } else { Ok(()) }
 }
 

@@ -3,13 +3,14 @@
 use egui::{Response, Role, Sense, Ui, WidgetInfo, vec2};
 
 use super::super::commands::{Action, Command, Situation};
+use super::super::settings::Keymap;
 use super::super::theme::Look;
 use super::icon::{ICON_SIZE, Icon, paint_icon};
 
 /// What a tooltip says about an action: its sentence and its keys.
 pub(crate) fn tooltip_text(ui: &Ui, action: Action) -> String {
     let entry = action.entry();
-    match entry.shortcut {
+    match Keymap::of(ui.ctx()).keys_of(action) {
         Some(shortcut) => format!("{} ({})", entry.tooltip, ui.ctx().format_shortcut(&shortcut)),
         None => entry.tooltip.to_owned(),
     }

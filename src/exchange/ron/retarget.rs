@@ -134,7 +134,8 @@ mod tests {
             let back: mirror::Step = ::ron::from_str(&text).unwrap();
             let PassStep::Retarget(mut back) = step_from(back).unwrap() else { panic!("{text}") };
             // Angles of limits go through degrees.
-            if let (Some(KeptLimits::Given(own)), Some(KeptLimits::Given(its))) = (&pass.limits, &back.limits) {
+            if let (Some(KeptLimits::Given(own)), Some(KeptLimits::Given(its))) = (&pass.limits, &back.limits)
+            {
                 assert_eq!((own.title.as_str(), own.joints.len()), (its.title.as_str(), its.joints.len()));
                 back.limits.clone_from(&pass.limits);
             }

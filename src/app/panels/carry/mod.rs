@@ -15,7 +15,7 @@ use super::super::carry_state::CarryHabits;
 use super::super::commands::{CarryCommand, Command};
 use super::super::view_models::CarryFacts;
 use super::super::widgets::{hint, strip};
-use super::{Scope, held};
+use super::Scope;
 use crate::scene::{PassId, RetargetPass};
 
 /// What the parts of the sheet show.
@@ -91,4 +91,13 @@ fn close_button(ui: &mut Ui, scope: &mut Scope<'_>) {
 /// Asks for other parameters of the pass that is shown: one step of the history.
 fn change(scope: &mut Scope<'_>, sheet: &Sheet<'_>, pass: RetargetPass) {
     scope.out.push(Command::Carry(CarryCommand::Change(sheet.pass.0, Box::new(pass))));
+}
+
+/// Lays out a panel inside exactly the room there is: content that is too wide is cut and can't push its panel wider.
+fn held(ui: &mut Ui, content: impl FnOnce(&mut Ui)) {
+    let bounds = ui.available_rect_before_wrap();
+    let mut child = ui.new_child(egui::UiBuilder::new().max_rect(bounds));
+    child.shrink_clip_rect(bounds);
+    content(&mut child);
+    ui.advance_cursor_after_rect(bounds);
 }

@@ -1,7 +1,14 @@
 //! What has been typed into a sheet.
 
+use std::collections::BTreeMap;
 use std::path::PathBuf;
 
+use egui::KeyboardShortcut;
+
+use super::super::super::commands::Action;
+use super::super::super::help::Subject;
+use super::super::super::pictures::Picture;
+use super::super::super::settings::Conflict;
 use super::super::super::view_models::{BlendKind, Memo};
 use crate::exchange::csv::TimeUnit;
 use crate::exchange::disk;
@@ -16,6 +23,12 @@ pub(crate) struct Form {
     pub error: Option<String>,
     /// Words looked for in the list of keys.
     pub search: String,
+    /// The action that new keys are being pressed for.
+    pub capturing: Option<Action>,
+    /// Keys that were pressed for an action, and why it can't have them just so.
+    pub conflict: Option<(Action, KeyboardShortcut, Conflict)>,
+    /// Pictures of explanations.
+    pub(super) pictures: BTreeMap<Subject, Picture<([usize; 2], bool)>>,
     /// Which columns hold the time, and w, x, y, z.
     pub columns: [usize; 5],
     /// The unit of the time column; without it what the header says, else seconds.

@@ -8,6 +8,7 @@ mod clips;
 mod columns;
 mod export;
 mod form;
+mod help;
 mod history;
 mod marker;
 mod path;
@@ -64,6 +65,8 @@ pub(crate) enum Dialog {
     Unsaved(Then),
     /// All changes.
     History,
+    /// Snag kinds and passes explained.
+    Help,
     /// All keys.
     Shortcuts,
     /// The change log.
@@ -85,7 +88,7 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
     let response = modal.show(ctx, |ui| {
         let room = ctx.content_rect().size() - vec2(80.0, 80.0);
         let wanted = match dialog {
-            Dialog::Shortcuts => vec2(680.0, 560.0),
+            Dialog::Shortcuts | Dialog::Help => vec2(720.0, 600.0),
             Dialog::WhatsNew | Dialog::History => vec2(560.0, 460.0),
             Dialog::Unsaved(_) | Dialog::MarkerName(_) => vec2(440.0, 160.0),
             _ => vec2(580.0, 460.0),
@@ -107,6 +110,7 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
             Dialog::ChooseClip => clips::clips_sheet(ui, scope),
             Dialog::Unsaved(_) => unsaved::unsaved_sheet(ui, scope),
             Dialog::History => history::history_sheet(ui, scope),
+            Dialog::Help => help::help_sheet(ui, form, scope),
             Dialog::Shortcuts => shortcuts::shortcuts_sheet(ui, form, scope),
             Dialog::WhatsNew => changes::changes_sheet(ui, scope),
             Dialog::About => about::about_sheet(ui, scope),
