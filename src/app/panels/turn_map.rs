@@ -319,7 +319,8 @@ fn draw_rows(
     }
     // Going to a snag moves time under the pointer: the press that chose it must not scrub as well.
     let is_press = response.is_pointer_button_down_on() || response.clicked();
-    if !is_choosing && !(scope.pictures.press_is_on_mark && is_press) {
+    let chose_mark = scope.pictures.press_is_on_mark && is_press;
+    if !is_choosing && !chose_mark {
         scrub_and_zoom(ui, &response, over_time, axis, clip, false, scope.out);
     }
     if let Some(pointer) = response.hover_pos() {

@@ -257,7 +257,8 @@ pub fn to_text(
         limits: work.limits.as_ref().map(|limits| limits_to(limits, &|joint| label(index, 0, joint))),
         search: [(work.search.is_loop, LOOP), (work.search.finds_slides, SLIDE)]
             .into_iter()
-            .filter_map(|(on, word)| on.then(|| word.to_owned()))
+            .filter(|(on, _)| *on)
+            .map(|(_, word)| word.to_owned())
             .collect(),
         markers: work.markers.iter().map(|marker| (marker.secs, marker.name.clone())).collect(),
     });
