@@ -187,6 +187,7 @@ impl Desk {
 }
 
 /// A tool that driving a window needs and that is not here; where `CI` is set that is a failure.
+#[expect(clippy::print_stdout, reason = "the runner shows it beside the test that was skipped")]
 pub(crate) fn missing_tool() -> Option<&'static str> {
     let missing = ["Xvfb", "xdotool", "import"].into_iter().find(|tool| {
         Command::new(tool).arg("-version").stdout(Stdio::null()).stderr(Stdio::null()).status().is_err()

@@ -3,7 +3,7 @@
 use std::path::{Path, PathBuf};
 
 use egui_kittest::Harness;
-use egui_kittest::kittest::{NodeT as _, Queryable as _};
+use egui_kittest::kittest::Queryable as _;
 use turnwright::app::commands::{Action, CarryCommand, CarrySheet, Command};
 use turnwright::app::paint::CpuRenderer;
 use turnwright::app::view_models::CarryState;

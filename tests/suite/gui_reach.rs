@@ -68,7 +68,7 @@ impl Desk {
             self.0.key_press(Key::Tab);
             self.0.step();
             self.0.step();
-            reached.extend(self.0.ctx.memory(|memory| memory.focused()).map(|id| id.value()));
+            reached.extend(self.0.ctx.memory(egui::Memory::focused).map(|id| id.value()));
         }
         let missed: Vec<_> = self.focusable().into_iter().filter(|(id, ..)| !reached.contains(id)).collect();
         assert!(

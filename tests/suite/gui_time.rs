@@ -334,7 +334,6 @@ fn the_list_of_snags_is_filtered_by_size() {
 /// Pictures for a person to look at, made when `TURNWRIGHT_SHOTS` names a folder; files to open are named in
 /// `TURNWRIGHT_SHOT_FILES`, with `:` between.
 #[test]
-#[expect(clippy::print_stdout, reason = "the runner shows it beside the test that was skipped")]
 fn pictures_of_every_state_can_be_made() {
     let Some(folder) = std::env::var_os("TURNWRIGHT_SHOTS") else {
         println!("skipped: TURNWRIGHT_SHOTS names no folder");

@@ -73,9 +73,9 @@ mod ground_faults;
 mod display;
 mod golden;
 #[cfg(feature = "gui-tests")]
-mod gui_curves;
-#[cfg(feature = "gui-tests")]
 mod gui_carry;
+#[cfg(feature = "gui-tests")]
+mod gui_curves;
 #[cfg(feature = "gui-tests")]
 mod gui_display;
 #[cfg(feature = "gui-tests")]
@@ -87,17 +87,17 @@ mod gui_reach;
 #[cfg(feature = "gui-tests")]
 mod gui_screen;
 #[cfg(feature = "gui-tests")]
-mod gui_space;
-#[cfg(feature = "gui-tests")]
 mod gui_session;
 #[cfg(feature = "gui-tests")]
 mod gui_settings;
 #[cfg(feature = "gui-tests")]
+mod gui_space;
+#[cfg(feature = "gui-tests")]
 mod gui_start;
 #[cfg(feature = "gui-tests")]
-mod gui_two;
-#[cfg(feature = "gui-tests")]
 mod gui_time;
+#[cfg(feature = "gui-tests")]
+mod gui_two;
 #[cfg(feature = "gui-tests")]
 mod gui_window;
 mod hostile;
@@ -120,5 +120,3 @@ mod rotor_properties;
 mod snags;
 mod strategies;
 mod support;
-#[cfg(feature = "gui-tests")]
-mod zz_shots;

@@ -191,7 +191,7 @@ impl Window {
             let step = RetargetPass { onto, rows, roots: [None, None], ..own }.into();
             self.edit(&Edit::ChangePass { work, pass, step });
         } else {
-            self.bench.session.carry.pass = self.bench.work().map(|work| work.next_pass_id());
+            self.bench.session.carry.pass = self.bench.work().map(crate::scene::ClipWork::next_pass_id);
             let step = RetargetPass { rows, ..RetargetPass::new(onto) }.into();
             self.edit(&Edit::AddPass { work, step, at: usize::MAX });
         }
@@ -304,7 +304,7 @@ impl Window {
         match answer {
             CarryAnswer::Facts(serial, work) if now == Some(serial) => self.bench.carry = Some(*work),
             CarryAnswer::Measured(serial, made) if now == Some(serial) => {
-                self.bench.carry_measured = Some(*made)
+                self.bench.carry_measured = Some(*made);
             }
             CarryAnswer::Opened(serial, result) if now == Some(serial) => match result {
                 Ok(source) => {

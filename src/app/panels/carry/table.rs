@@ -71,20 +71,16 @@ pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     ui.painter().hline(editor.x_range(), editor.top(), (1.0, scope.look.line));
     ui.scope_builder(egui::UiBuilder::new().max_rect(editor.shrink2(vec2(INSET, 5.0))), |ui| {
         let chosen = sheet.habits.row.and_then(|row| facts.rows.iter().find(|own| own.target == row));
-        match chosen {
-            Some(row) => editor_ui(ui, row, sheet, scope),
-            None => {
-                let words = match doubts.as_slice() {
-                    [] => "Choose a row, or click a joint of the target figure, to change what drives it"
-                        .to_owned(),
-                    [only] => only.clone(),
-                    [first, ..] => format!("{first} (and {} more in the report)", doubts.len() - 1),
-                };
-                ui.add(
-                    egui::Label::new(egui::RichText::new(words).size(12.5).color(scope.look.faint)).wrap(),
-                );
-            }
+        if let Some(row) = chosen {
+            editor_ui(ui, row, sheet, scope);
+            return;
         }
+        let words = match doubts.as_slice() {
+            [] => "Choose a row, or click a joint of the target figure, to change what drives it".to_owned(),
+            [only] => only.clone(),
+            [first, ..] => format!("{first} (and {} more in the report)", doubts.len() - 1),
+        };
+        ui.add(egui::Label::new(egui::RichText::new(words).size(12.5).color(scope.look.faint)).wrap());
     });
 }
 
