@@ -853,7 +853,7 @@ fn blends_take_curves_and_carry_other_bodies_over() {
     assert!(plain != mean && plain != parent && mean != parent);
     bench.run("blend clean-deckhand.bvh deckhand.bvh --join 0.4 --find-place -o place.bvh").expect(0);
     let error = bench.run("blend clean-deckhand.bvh deckhand.bvh --mix 0.4 --find-place -o no.bvh").expect(2);
-    assert!(error.stderr.contains("--join"), "{}", error.stderr);
+    assert!(error.stderr.contains("--find-place"), "{}", error.stderr);
 
     let (Some(walk), Some(biped)) =
         (shared("data/bvh/cmu_02_01_walk.bvh"), shared("data/gltf/biped23_movement_clips.glb"))

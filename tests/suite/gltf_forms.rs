@@ -69,25 +69,6 @@ fn all_integer_encodings_of_rotations() {
     check(5123, &[0, 0, 0xFF, 0xFF, 0x33, 0x33, 0xCC, 0xCC], &[[0.0, 1.0, 0.2, 0.8]]);
 }
 
-/// What rounding to bytes takes of a turn's length is no fault of the file; what goes beyond is kept to be found.
-#[test]
-fn turns_in_bytes_are_unit_as_far_as_their_rounding_goes() {
-    let turns: [[f64; 4]; 3] =
-        [[0.5, 0.5, 0.5, 0.5], [0.1, -0.2, 0.3, 0.927_361_849_549_570_4], [0.6, 0.0, 0.0, -0.8]];
-    let mut bytes: Vec<u8> =
-        turns.as_flattened().iter().map(|part| (part * 127.0).round() as i8 as u8).collect();
-    bytes.extend([0, 0, 0, 125]);
-    let (_, clips, notes) = read(&with_rotations(5120, true, None, &bytes, 4));
-    assert_eq!(notes, []);
-    let found = keys(&clips[0], "a");
-    for (turn, key) in turns.iter().zip(&found) {
-        let norm = key.iter().map(|part| part * part).sum::<f64>().sqrt();
-        assert!((norm - 1.0).abs() < 1e-15, "{key:?}");
-        assert!(turn.iter().zip(key).all(|(own, part)| (own - part).abs() < 0.01), "{turn:?} {key:?}");
-    }
-    assert_eq!(found[3], [0.0, 0.0, 0.0, f64::from(125.0_f32 / 127.0)]);
-}
-
 #[test]
 fn a_stride_is_borne() {
     let bytes = [0, 0, 0, 127, 9, 9, 9, 9, 127, 0, 0, 0];

@@ -143,10 +143,7 @@ impl<'a> Tracks<'a> {
         }
         let keys = Keys { times: &times, per_key, components: wanted.components, numbers: &values.numbers };
         let track = match part {
-            Part::Rotation => {
-                let is_coarse = matches!(values.component, Component::I8 | Component::U8);
-                Track::Rotation(rotation_track(&keys, interpolation, is_coarse))
-            }
+            Part::Rotation => Track::Rotation(rotation_track(&keys, interpolation)),
             Part::Translation | Part::Scale => Track::Vector(vector_track(&keys, interpolation)),
         };
         let decoded = Decoded { track, component: values.component, is_trimmed: times.kept.is_some() };
@@ -222,11 +219,7 @@ impl Keys<'_> {
     }
 }
 
-/// A turn in whole bytes can't be of unit length but by luck: as far as that is their rounding, it is taken as unit, so that
-/// nobody finds a fault in it. A cubic stays as it is, for it plays as its very numbers say.
-fn rotation_track(keys: &Keys<'_>, interpolation: Interpolation, is_coarse: bool) -> RotationTrack {
-    /// Four parts, each half a 127th off.
-    const BYTE_ROUNDING: f64 = 1.0 / 127.0;
+fn rotation_track(keys: &Keys<'_>, interpolation: Interpolation) -> RotationTrack {
     let rotor = |xyzw: &[f64]| Rotor::from_xyzw([xyzw[0], xyzw[1], xyzw[2], xyzw[3]]);
     let path = match interpolation {
         Interpolation::Step => PathKind::Hold,
@@ -235,13 +228,9 @@ fn rotation_track(keys: &Keys<'_>, interpolation: Interpolation, is_coarse: bool
     };
     let is_cubic = interpolation == Interpolation::CubicSpline;
     let middle = usize::from(is_cubic);
-    let rounded = |rotor: Rotor| match rotor.try_normalize() {
-        Some(unit) if is_coarse && !is_cubic && (rotor.norm() - 1.0).abs() <= BYTE_ROUNDING => unit,
-        _ => rotor,
-    };
     RotationTrack {
         times: keys.times(),
-        keys: keys.iter().map(|values| rounded(rotor(values[middle]))).collect(),
+        keys: keys.iter().map(|values| rotor(values[middle])).collect(),
         paths: Paths::Every(path),
         tangents: is_cubic.then(|| keys.iter().map(|values| [rotor(values[0]), rotor(values[2])]).collect()),
         segments: Segments::default(),
