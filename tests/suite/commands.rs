@@ -862,7 +862,7 @@ fn blends_take_curves_and_carry_other_bodies_over() {
     };
     bench.copy(&walk, "walk.bvh");
     bench.copy(&biped, "biped.glb");
-    let run = bench.run("blend walk.bvh biped.glb#Running_A --join 0.3 -o both.bvh").expect(0);
+    let run = bench.run("blend walk.bvh biped.glb#5 --join 0.3 -o both.bvh").expect(0);
     assert!(run.stderr.contains("carried over"), "{}", run.stderr);
     // A machine has no joint that a walker's could drive.
     let error = bench.run("blend walk.bvh crane.csv --join 0.3 -o no.bvh");

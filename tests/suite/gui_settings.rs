@@ -51,6 +51,9 @@ impl Desk {
 
     #[track_caller]
     fn click(&mut self, label: &str) {
+        // A list may have to be scrolled to it first.
+        self.0.get_by_label(label).scroll_to_me();
+        self.run();
         self.0.get_by_label(label).click();
         self.run();
     }

@@ -575,7 +575,7 @@ pub const TABLE: &[Entry] = &{
             A::Space(O::Reach),
             "Show limit of the joint",
             "The cone that the chosen joint may point into, and how much of it is used",
-            Some(alt(Key::R)),
+            Some(alt_shift(Key::R)),
             CLIP,
         )
         .switch(|now| now.space.shows_reach),
@@ -584,7 +584,7 @@ pub const TABLE: &[Entry] = &{
             A::Space(O::Names),
             "Show joint names",
             "A name at each joint, as far as there is room",
-            Some(alt(Key::K)),
+            Some(alt_shift(Key::K)),
             CLIP,
         )
         .switch(|now| now.space.shows_names),

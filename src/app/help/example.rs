@@ -8,8 +8,8 @@ use glam::DVec3;
 
 use super::topic::Subject;
 use crate::clip::{
-    Clip, FileAngles, FrameGrid, JointTracks, KeyChange, KeyEdit, Push, PushFrame, RotationTrack, Smoothing,
-    Times,
+    Clip, FileAngles, FrameGrid, JointTracks, KeyChange, KeyEdit, PathKind, Paths, Push, PushFrame,
+    RotationTrack, Smoothing, Times,
 };
 use crate::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
 use crate::mend::{SurveyOptions, apply_all, survey};
@@ -177,11 +177,17 @@ fn faulty(kind: SnagKind) -> (Clip, Option<usize>) {
             (of_rows(row), Some(0))
         }
         SnagKind::LongWay => {
-            let row = |frame: usize| {
-                let z = -100.0 + frame as f64 * 0.5;
-                if frame >= 60 { [z + 290.0, 12.0, 4.0] } else { [z, 12.0, 4.0] }
-            };
-            (of_rows(row), Some(0))
+            // A cubic between opposite signs of nearly the same turn: the player goes all the way round.
+            let keys = [0.0, 0.35, -0.7, -1.05, -1.4].map(|xy_rad: f64| {
+                let key = turn(xy_rad.abs(), 0.0);
+                if xy_rad < 0.0 { -key } else { key }
+            });
+            let step_secs = (FRAMES - 1) as f64 / RATE / (keys.len() - 1) as f64;
+            let times = Times::Even { step_secs, count: keys.len() };
+            let mut track = RotationTrack::from_rotors(times, keys.to_vec());
+            track.paths = Paths::Every(PathKind::Cubic);
+            track.tangents = Some(vec![[Rotor::new(0.0, 0.0, 0.0, 0.0); 2]; keys.len()].into());
+            (clip(track), None)
         }
         SnagKind::HalfTurn => (of_angles(|frame| angle(frame) + if inside(frame) { PI } else { 0.0 }), None),
         SnagKind::Spike => (of_angles(|frame| angle(frame) + if frame == 60 { 0.9 } else { 0.0 }), None),

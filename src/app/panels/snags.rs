@@ -358,6 +358,8 @@ fn details_ui(ui: &mut Ui, footer: Rect, scope: &mut Scope<'_>) {
     } else {
         ui.add_space(4.0);
     }
+    // What finds no room here stands in the menu.
+    let room = ui.available_width();
     ui.horizontal(|ui| {
         ui.spacing_mut().item_spacing.x = 5.0;
         if scope.now.snag_is_mended {
@@ -366,9 +368,13 @@ fn details_ui(ui: &mut Ui, footer: Rect, scope: &mut Scope<'_>) {
             action_button(ui, Action::Mend, scope.now, scope.out);
         }
         action_button(ui, Action::Leave, scope.now, scope.out);
-        look_switch(ui, scope);
-        ui.separator();
-        action_button(ui, Action::MendKind, scope.now, scope.out);
+        if room > 330.0 {
+            look_switch(ui, scope);
+            ui.separator();
+        }
+        if room > 500.0 {
+            action_button(ui, Action::MendKind, scope.now, scope.out);
+        }
         action_button(ui, Action::MendSafe, scope.now, scope.out);
     });
 }

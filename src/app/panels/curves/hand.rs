@@ -109,7 +109,11 @@ pub(super) fn hand_ui(ui: &Ui, response: &Response, chart: &Chart<'_>, scope: &m
             scope.pictures.curve_press = None;
         } else {
             let at = pointer.unwrap_or(press.last);
+            let was_drag = press.is_drag;
             press.go_on(at, modifiers.shift);
+            if press.is_drag && !was_drag {
+                press.settle_hold(chart);
+            }
             if matches!(press.hold, Hold::Ground) {
                 scrub_or_pan(ui, response, &chart.axis, chart.clip, scope.out);
             }
@@ -237,6 +241,17 @@ impl CurvePress {
         } else {
             Way::Both
         };
+    }
+
+    /// What a press has hold of shows when it becomes a drag.
+    fn settle_hold(&mut self, chart: &Chart<'_>) {
+        // One key of captured motion moved by itself would be a spike: only keys that were chosen before are moved.
+        if let Hold::Pip(grip) = self.hold
+            && chart.is_dense(grip.joint, grip.secs)
+            && !chart.choice.has(grip.joint, grip.secs)
+        {
+            self.hold = Hold::Dense(grip);
+        }
         // Captured curves lie everywhere: who drags across scrubs.
         if matches!(self.hold, Hold::Dense(_)) && self.way == Way::Time {
             self.hold = Hold::Ground;
