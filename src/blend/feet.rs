@@ -12,12 +12,12 @@ const LEAST_WEIGHT: f64 = 1e-3;
 /// A shorter contact is none, in frames.
 const LEAST_FRAMES: usize = 3;
 
-/// As [`mix`], with feet held where they stand: where the clips that have a foot on the ground weigh more than half together, it
+/// As [`mix()`], with feet held where they stand: where the clips that have a foot on the ground weigh more than half together, it
 /// keeps one place. Frames that are one clip's alone change only where a foot stands on from them into mixed ones, and for 0.15 s
 /// beside such a stand. Weight 0 is `a`, bit for bit.
 ///
 /// # Errors
-/// As for [`mix`].
+/// As for [`mix()`].
 pub fn mix_on_feet(a: &Clip, b: &Clip, weight: &MixAlong, mask: &Mask) -> Result<Clip, BlendError> {
     let mixed = mix(a, b, weight, mask)?;
     let secs: Vec<f64> = mixed.grid.times.iter().collect();
@@ -26,12 +26,12 @@ pub fn mix_on_feet(a: &Clip, b: &Clip, weight: &MixAlong, mask: &Mask) -> Result
     Ok(held(&mixed, a, b, &origins, mask).map_or(mixed, |(held, _)| held))
 }
 
-/// As [`join`], with feet held where they stand in the overlap: a foot that is down in both clips there stands at one place, from
+/// As [`join()`], with feet held where they stand in the overlap: a foot that is down in both clips there stands at one place, from
 /// where it is set down in `a` to where it is lifted in `b`. So frames outside the overlap change where a foot stands on beyond its
 /// ends, and for 0.15 s beside such a stand; all others are as `join` has them.
 ///
 /// # Errors
-/// As for [`join`].
+/// As for [`join()`].
 pub fn join_on_feet(a: &Clip, b: &Clip, place: JoinPlace, mask: &Mask) -> Result<Clip, BlendError> {
     let joined = join(a, b, place, mask)?;
     let first_secs: Vec<f64> = joined.grid.times.iter().collect();

@@ -80,7 +80,7 @@ pub fn log<F: Real>(level: Level, rotors: Parts<'_, F, 4>, out: PartsMut<'_, F, 
     );
 }
 
-/// `θ/sin θ` of `cos θ` from 0 to 1, for half a turn `θ`: what [`log`] stretches the parts by.
+/// `θ/sin θ` of `cos θ` from 0 to 1, for half a turn `θ`: what [`log()`] stretches the parts by.
 pub(in super::super) fn angle_over_sine(cosine: f64) -> f64 {
     let (above, below) = Polynomials::angle_over_sine(cosine);
     above / below
