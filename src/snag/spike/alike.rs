@@ -37,6 +37,11 @@ const TIMES_MIRROR: f64 = 1.2;
 /// Two stretches are alike when the angles between their poses differ by less than this share of the roughness, in the mean.
 const ALIKE_SHARE: f64 = 0.35;
 
+/// A swing climbs to its height and down again: its weakest key lies off by less than this share of the median, or no key
+/// shows more than this share of the height in its roughness. What is off by the same all along shows half at its borders.
+const SWING_SHARE: f64 = 0.5;
+const SWING_ROUGHNESS: f64 = 0.4;
+
 /// Keys beside a run that belong to its shape.
 const BESIDE: usize = 2;
 
@@ -67,6 +72,7 @@ impl<'a> Alike<'a> {
             || run.peak < LEAST_RAD
             || !may_be_spike(scan, rough, run)
             || !comes_back(rough, run)
+            || is_swing(run)
         {
             return None;
         }
@@ -95,6 +101,11 @@ impl<'a> Alike<'a> {
         };
         is_alone.then_some(if gain >= CLEAR_GAIN { CONFIDENCE_CLEAR } else { CONFIDENCE })
     }
+}
+
+/// Whether a run of several keys is climbed step by step, as a joint moves, and not off all along.
+fn is_swing(run: Run) -> bool {
+    run.last > run.first && (run.weakest < SWING_SHARE * run.size || run.peak < SWING_ROUGHNESS * run.size)
 }
 
 /// Whether another joint does what this one does around a run, at any time.
