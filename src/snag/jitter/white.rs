@@ -178,11 +178,10 @@ impl Judge<'_> {
         let mirror = self.mirror();
         let is_mirrored = mirror.is_some_and(|worst| worst > MIRROR_SHARE * window.level);
         let spread = spread(&window.fourths);
-        if spread >= if is_mirrored { SPREAD_BESIDE_MIRROR } else { SPREAD } {
-            return true;
-        }
+        let is_spread = spread >= if is_mirrored { SPREAD_BESIDE_MIRROR } else { SPREAD };
         let is_above = width >= FEW_KEYS || mirror.is_none_or(|worst| window.level > TIMES_MIRROR * worst);
-        is_above && self.done_near(window) <= most_near
+        // A bend that runs along a tail or a spine spreads too; noise of several directions is never a neighbour's.
+        (is_spread || is_above) && self.done_near(window) <= most_near
     }
 
     fn quiet(&mut self) -> f64 {

@@ -13,7 +13,7 @@ use crate::rotor::Rotor;
 use super::super::mirror::mirror_of;
 use super::super::roughness::{Roughness, angle_of_dot};
 use super::super::scan::Scan;
-use super::{LEAST_KEYS, LEAST_SPREAD_RAD, Run, comes_back, may_be_spike};
+use super::{LEAST_KEYS, LEAST_SPREAD_RAD, Run, STEP_SIZES, comes_back, may_be_spike};
 
 /// With more poses a second a spike is told by itself.
 const FINE_SECS: f64 = 0.02;
@@ -36,6 +36,12 @@ const TIMES_MIRROR: f64 = 1.2;
 
 /// Two stretches are alike when the angles between their poses differ by less than this share of the roughness, in the mean.
 const ALIKE_SHARE: f64 = 0.35;
+
+/// A swing is off unevenly: its weakest key by less than this share of the median. And it is climbed step by step, so that no
+/// key shows more than this share of the height in its roughness, or goes on to another place. What is off by the same all
+/// along shows half of it at its borders, and comes back.
+const SWING_SHARE: f64 = 0.5;
+const SWING_ROUGHNESS: f64 = 0.5;
 
 /// Keys beside a run that belong to its shape.
 const BESIDE: usize = 2;
@@ -67,6 +73,7 @@ impl<'a> Alike<'a> {
             || run.peak < LEAST_RAD
             || !may_be_spike(scan, rough, run)
             || !comes_back(rough, run)
+            || is_swing(run)
         {
             return None;
         }
@@ -95,6 +102,12 @@ impl<'a> Alike<'a> {
         };
         is_alone.then_some(if gain >= CLEAR_GAIN { CONFIDENCE_CLEAR } else { CONFIDENCE })
     }
+}
+
+/// Whether a run of several keys goes as a joint moves, and is not off all along.
+fn is_swing(run: Run) -> bool {
+    let is_uneven = run.last > run.first && run.weakest < SWING_SHARE * run.size;
+    is_uneven && (run.peak < SWING_ROUGHNESS * run.size || run.across > STEP_SIZES * run.size)
 }
 
 /// Whether another joint does what this one does around a run, at any time.

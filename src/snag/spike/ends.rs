@@ -22,6 +22,9 @@ const NEAR_KEYS: usize = 16;
 const TIMES_OTHER: f64 = 5.0;
 const LEAST_OTHER_RAD: f64 = 2.0 / 180.0 * PI;
 
+/// A joint whose usual step is no more than this rests, and tells nothing.
+const LEAST_MOVE_RAD: f64 = 1e-4;
+
 /// Nothing beyond it shows that the motion goes on as before, so it is left to a person.
 pub(super) const CONFIDENCE: f64 = 0.55;
 
@@ -59,17 +62,19 @@ fn off(scan: &Scan<'_>, rough: &Roughness, at_start: bool, length: usize) -> Opt
     let sure = LEAST_RAD.max(TIMES_ROUGH * roughest).max(TIMES_STEP * usual);
     let (first, last) = (key(0).min(key(length - 1)), key(0).max(key(length - 1)));
     let moves = (first.saturating_sub(1)..=last.min(count - 2)).all(|key| scan.moves_after(key));
-    if weakest < sure || !moves || others_jump(scan, rough.secs[key(length)], rough.secs[key(length - 1)]) {
+    if weakest < sure || !moves || may_be_meant(scan, rough.secs[key(length)], rough.secs[key(length - 1)]) {
         return None;
     }
     Some(Run { first, last, size, weakest, peak: size, rest: roughest, across: size })
 }
 
-/// Whether another joint jumps between two neighbouring times too.
-fn others_jump(scan: &Scan<'_>, from: f64, to: f64) -> bool {
-    scan.clip.skeleton.listed().filter(|other| *other != scan.joint).any(|other| {
+/// Whether another joint jumps between two neighbouring times too, or none moves on there that could speak against a
+/// calibration pose.
+fn may_be_meant(scan: &Scan<'_>, from: f64, to: f64) -> bool {
+    let mut moves_on = false;
+    for other in scan.clip.skeleton.listed().filter(|other| *other != scan.joint) {
         let Some(other) = Scan::new(scan.clip, other).filter(|other| other.track.keys.len() > 4) else {
-            return false;
+            continue;
         };
         let track = other.track;
         let turn = |from: f64, to: f64| track.at(from).turn_to(track.at(to));
@@ -77,6 +82,11 @@ fn others_jump(scan: &Scan<'_>, from: f64, to: f64) -> bool {
         let mut beside: Vec<f64> =
             (1..=9).map(|i| f64::from(i) * (from - to)).map(|off| turn(from + off, to + off)).collect();
         beside.sort_by(f64::total_cmp);
-        own > (TIMES_OTHER * beside[4]).max(LEAST_OTHER_RAD)
-    })
+        let usual = beside[4];
+        if own > (TIMES_OTHER * usual).max(LEAST_OTHER_RAD) {
+            return true;
+        }
+        moves_on |= usual > LEAST_MOVE_RAD;
+    }
+    !moves_on
 }
