@@ -367,11 +367,7 @@ pub fn carry_lines(report: &Report, target: &Skeleton) -> Vec<CarryLine> {
     let mut lines: Vec<CarryLine> = report
         .missed
         .iter()
-        .map(|own| {
-            let mut text = own.sentence(target);
-            text.get_mut(..1).map(str::make_ascii_uppercase);
-            CarryLine { text, frame: Some(own.frame), is_miss: true }
-        })
+        .map(|own| CarryLine { text: own.sentence(target), frame: Some(own.frame), is_miss: true })
         .collect();
     let mut say = |text: String, frame: Option<usize>| lines.push(CarryLine { text, frame, is_miss: false });
     say(
@@ -413,6 +409,9 @@ pub fn carry_lines(report: &Report, target: &Skeleton) -> Vec<CarryLine> {
     }
     for note in &report.notes {
         say(note.clone(), None);
+    }
+    for line in &mut lines {
+        line.text.get_mut(..1).map(str::make_ascii_uppercase);
     }
     lines
 }

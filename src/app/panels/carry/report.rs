@@ -73,8 +73,8 @@ pub(super) fn report_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
             }
         }
         for doubt in doubts {
-            ui.horizontal_wrapped(|ui| {
-                ui.add_space(INSET + 18.0);
+            let margin = egui::Margin { left: INSET as i8 + 18, right: INSET as i8, top: 1, bottom: 1 };
+            egui::Frame::NONE.inner_margin(margin).show(ui, |ui| {
                 let words = egui::RichText::new(format!("Question: {doubt}")).size(12.5).color(look.faint);
                 ui.add(egui::Label::new(words).wrap());
             });
