@@ -208,6 +208,12 @@ fn a_map_is_saved_loaded_and_what_is_wrong_is_told_in_the_sheet() {
     sheet.ask(Command::Carry(CarryCommand::OpenOnto(folder.path().join("missing.glb"))));
     assert!(sheet.0.get_all_by_label_contains("missing.glb").next().is_some());
     sheet.ask(Command::Carry(CarryCommand::OpenOnto(figure)));
+    // In the smallest window nothing of the settings hides behind the report.
+    let report = sheet.0.get_by_label("Report").rect();
+    for label in ["Another file…", "Forget corrections", "Export onto the target's file…"] {
+        let rect = sheet.0.get_by_label(label).rect();
+        assert!(rect.bottom() <= report.top() && rect.right() <= report.right(), "{label}: {rect} {report}");
+    }
     let path = folder.path().join("map.csv");
     sheet.click("Save map…");
     sheet.ask(Command::Carry(CarryCommand::SaveMap(path.clone())));
@@ -215,6 +221,7 @@ fn a_map_is_saved_loaded_and_what_is_wrong_is_told_in_the_sheet() {
     assert!(text.contains("source,target,confidence,reason") && text.lines().count() > 15, "{text}");
     disk::write(&path, b"source,target\n,head\n").expect("it writes");
     sheet.click("Load map…");
+    sheet.0.get_by_label("Load a joint map");
     sheet.ask(Command::Carry(CarryCommand::LoadMap(path.clone())));
     assert_eq!(sheet.pass().1.rows, [(None, Some("head".to_owned()))]);
     sheet.click("Forget corrections");
@@ -238,4 +245,56 @@ fn an_animal_gets_questions_and_no_arms() {
     sheet.click_beginning("Questions (");
     assert!(sheet.window().bench().session.carry.questions_only);
     assert!(sheet.0.get_all_by_label_contains("to be looked at").next().is_some());
+}
+
+/// Pictures to be looked at: `TURNWRIGHT_SHOTS=folder cargo test … pictures_of_the_sheet`. Another pair of files is named by
+/// `TURNWRIGHT_SHOT_FILES`, with `:` between.
+#[test]
+fn pictures_of_the_sheet_can_be_made() {
+    let Some(folder) = std::env::var_os("TURNWRIGHT_SHOTS") else {
+        println!("skipped: TURNWRIGHT_SHOTS names no folder");
+        return;
+    };
+    let named = std::env::var("TURNWRIGHT_SHOT_FILES").unwrap_or_default();
+    let Some((clip, figure)) =
+        named.split_once(':').map(|(clip, figure)| (clip.into(), figure.into())).or_else(files)
+    else {
+        return;
+    };
+    for size in [[1280.0, 720.0], [2560.0, 1440.0]] {
+        for is_light in [false, true] {
+            let mut sheet = Sheet::open(&clip, size);
+            if is_light {
+                sheet.ask(Command::Do(Action::Light));
+            }
+            let picture = |sheet: &mut Sheet<'_>, state: &str| {
+                let light = if is_light { "light" } else { "dark" };
+                let path = Path::new(&folder).join(format!("carry-{}-{light}-{state}.png", size[0]));
+                sheet.0.render().expect("a picture").save(path).expect("a folder to write to");
+            };
+            sheet.ask(Command::Do(Action::Retarget));
+            picture(&mut sheet, "asked");
+            sheet.ask(Command::Carry(CarryCommand::OpenOnto(figure.clone())));
+            sheet.ask(Command::Scrub(1.0));
+            picture(&mut sheet, "opened");
+            let facts = sheet.window().bench().carry.as_ref().expect("work").facts.clone().expect("facts");
+            let row = facts.rows.iter().find(|row| row.is_question || row.target_label.contains("arm"));
+            sheet.ask(Command::Carry(CarryCommand::ChooseRow(row.map(|row| row.target))));
+            sheet.click("Keep at rest");
+            sheet.click("Lane Left hand");
+            sheet.click("New: Left hand");
+            sheet.click("Hold at a point");
+            sheet.click("Within adult limits");
+            sheet.click("Source rests as in a frame");
+            sheet.click("Overlaid");
+            picture(&mut sheet, "changed");
+            sheet.click("Overlaid");
+            sheet.ask(Command::Carry(CarryCommand::ShowRest(true)));
+            sheet.ask(Command::Carry(CarryCommand::QuestionsOnly(true)));
+            sheet.ask(Command::Carry(CarryCommand::ChooseRow(None)));
+            picture(&mut sheet, "rest");
+            sheet.ask(Command::Carry(CarryCommand::Ask(CarrySheet::Export)));
+            picture(&mut sheet, "export");
+        }
+    }
 }

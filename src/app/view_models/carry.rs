@@ -410,6 +410,9 @@ pub fn carry_lines(report: &Report, target: &Skeleton) -> Vec<CarryLine> {
     for note in &report.notes {
         say(note.clone(), None);
     }
+    for line in &mut lines {
+        line.text.get_mut(..1).map(str::make_ascii_uppercase);
+    }
     lines
 }
 

@@ -7,7 +7,8 @@ use crate::raster::{
 };
 use crate::retarget::{self, Transfer};
 use crate::rotor::Rotor;
-use crate::skeleton::{LocalPose, Skeleton};
+use crate::skeleton::LocalPose;
+use crate::skeleton::roles::Role;
 
 /// From where both figures are seen.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -61,9 +62,17 @@ fn upright(figure: &retarget::Figure) -> Rotor {
     Rotor::from_matrix(&DMat3::from_cols(left, shape.up, shape.forward)).reverse()
 }
 
-fn limbs(skeleton: &Skeleton, local: &LocalPose, map: impl Fn(DVec3) -> DVec3) -> Vec<FigureLimb> {
+/// What stands above the hips is a ball: a line from there to the hips would look like a third leg.
+fn limbs(figure: &retarget::Figure, local: &LocalPose, map: impl Fn(DVec3) -> DVec3) -> Vec<FigureLimb> {
+    let skeleton = &figure.skeleton;
     let mut limbs = limbs_of_skeleton(skeleton, &skeleton.world(local));
+    let above = |joint: &usize| skeleton.parent_joint(*joint);
+    let carriers: Vec<usize> =
+        std::iter::successors(figure.roles.joint(Role::Hips).as_ref().and_then(above), above).collect();
     for limb in &mut limbs {
+        if carriers.contains(&limb.joint) {
+            limb.to = limb.from;
+        }
         (limb.from, limb.to) = (map(limb.from), map(limb.to));
     }
     limbs
@@ -72,8 +81,8 @@ fn limbs(skeleton: &Skeleton, local: &LocalPose, map: impl Fn(DVec3) -> DVec3) -
 /// One figure alone.
 pub fn carry_view(picture: &CarryPicture, pose: CarryPose<'_>) -> SceneView {
     let turn = upright(pose.figure);
-    let own = limbs(&pose.figure.skeleton, pose.local, |place| turn.apply(place));
-    let rest = limbs(&pose.figure.skeleton, &pose.figure.rest, |place| turn.apply(place));
+    let own = limbs(pose.figure, pose.local, |place| turn.apply(place));
+    let rest = limbs(pose.figure, &pose.figure.rest, |place| turn.apply(place));
     let size = Bounds::of_points(rest.iter().flat_map(|limb| [limb.from, limb.to])).map_or(1.0, |all| {
         let across = all.max - all.min;
         across.x.max(across.y).max(across.z)
@@ -81,7 +90,7 @@ pub fn carry_view(picture: &CarryPicture, pose: CarryPose<'_>) -> SceneView {
     view_of(picture, vec![(own, pose)], size)
 }
 
-/// Both in one picture: the source in the target's size, its middle on the target's.
+/// Both in one picture: the source in the target's size, its hips on the target's; where either has none, its middle.
 pub fn carry_overlay(
     picture: &CarryPicture,
     [source, target]: [CarryPose<'_>; 2],
@@ -89,13 +98,21 @@ pub fn carry_overlay(
 ) -> SceneView {
     let turns = [upright(source.figure), upright(target.figure)];
     let scale = transfer.map_or(1.0, Transfer::scale);
-    let its = limbs(&target.figure.skeleton, target.local, |place| turns[1].apply(place));
-    let own = limbs(&source.figure.skeleton, source.local, |place| turns[0].apply(place) * scale);
+    let its = limbs(target.figure, target.local, |place| turns[1].apply(place));
+    let own = limbs(source.figure, source.local, |place| turns[0].apply(place) * scale);
     let middle = |limbs: &[FigureLimb]| {
         Bounds::of_points(limbs.iter().flat_map(|limb| [limb.from, limb.to]))
             .map_or((DVec3::ZERO, 1.0), |all| (all.center(), (all.max - all.min).max_element()))
     };
-    let ([at, its_at], size) = ([middle(&own).0, middle(&its).0], middle(&its).1.max(middle(&own).1));
+    let size = middle(&its).1.max(middle(&own).1);
+    let hips = |pose: &CarryPose<'_>| {
+        let joint = pose.figure.roles.joint(Role::Hips)?;
+        Some(pose.figure.skeleton.world(pose.local).get(joint)?.position())
+    };
+    let [at, its_at] = match (hips(&source), hips(&target)) {
+        (Some(own), Some(its)) => [turns[0].apply(own) * scale, turns[1].apply(its)],
+        _ => [middle(&own).0, middle(&its).0],
+    };
     let own = own
         .into_iter()
         .map(|limb| FigureLimb { from: limb.from - at + its_at, to: limb.to - at + its_at, ..limb })

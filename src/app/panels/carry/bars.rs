@@ -7,7 +7,7 @@ use egui::{
 use glam::DVec3;
 
 use super::super::super::commands::{CarryCommand, Command};
-use super::super::super::theme::{GUTTER_WIDTH, INSET, TIME_MARGIN};
+use super::super::super::theme::{GUTTER_WIDTH, INSET, STRIP_HEIGHT, TIME_MARGIN};
 use super::super::super::view_models::{
     BarMark, CarryBar, Lane, carry_bars, with_bar, with_bar_at, with_hold, without_bar,
 };
@@ -20,7 +20,7 @@ use crate::scene::RetargetPass;
 /// Height of a lane, points.
 const LANE: f32 = 17.0;
 /// Height of the whole, its strip included.
-pub(super) const HEIGHT: f32 = 28.0 + 6.0 * LANE + 6.0;
+pub(super) const HEIGHT: f32 = STRIP_HEIGHT + 6.0 * LANE + 12.0;
 /// So near the end of a bar its end is meant and not the bar, points.
 const END: f32 = 6.0;
 /// A new contact lasts so long before and after the playhead, seconds.
@@ -157,7 +157,9 @@ fn bar_ui(
         };
         let font = FontId::proportional(10.5);
         let clipped = painter.with_clip_rect(bounds.intersect(painter.clip_rect()));
-        clipped.text(bounds.left_center() + vec2(4.0, 0.0), Align2::LEFT_CENTER, letter, font, look.text);
+        // Dark on the full bar, in either window.
+        let ink = if ui.visuals().dark_mode { look.background } else { look.text };
+        clipped.text(bounds.left_center() + vec2(4.0, 0.0), Align2::LEFT_CENTER, letter, font, ink);
     }
     focus_ring(ui, &response);
     let found = sheet.facts.map_or(&[][..], |facts| facts.found.as_slice());

@@ -44,7 +44,8 @@ pub(super) fn report_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
         ui.add_space(3.0);
         for line in &lines {
             let indent = INSET + 18.0;
-            let ink = if line.is_miss { look.error } else { look.text };
+            // The mark says that it is a miss; words in its colour would be hard to read in a light window.
+            let ink = look.text;
             let font = FontId::proportional(12.5);
             let width = (ui.available_width() - indent - INSET).max(20.0);
             let galley = ui.painter().layout(line.text.clone(), font, ink, width);
@@ -72,8 +73,8 @@ pub(super) fn report_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
             }
         }
         for doubt in doubts {
-            ui.horizontal_wrapped(|ui| {
-                ui.add_space(INSET + 18.0);
+            let margin = egui::Margin { left: INSET as i8 + 18, right: INSET as i8, top: 1, bottom: 1 };
+            egui::Frame::NONE.inner_margin(margin).show(ui, |ui| {
                 let words = egui::RichText::new(format!("Question: {doubt}")).size(12.5).color(look.faint);
                 ui.add(egui::Label::new(words).wrap());
             });

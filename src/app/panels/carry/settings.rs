@@ -12,21 +12,26 @@ use crate::retarget::KeptLimits;
 use crate::scene::RetargetPass;
 use crate::skeleton::Skeleton;
 
+/// Height in which all of it shows, its strip included: at 1280 by 720 none of it needs scrolling.
+pub(super) const HEIGHT: f32 = 328.0;
+/// Width of the words at the head of a row.
+const WHO: f32 = 46.0;
+
 pub(super) fn settings_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     strip(ui, "Settings", |_| {});
     ui.painter().vline(ui.max_rect().left(), ui.max_rect().y_range(), (1.0, scope.look.line));
     ScrollArea::vertical().id_salt("carry settings").auto_shrink(false).show(ui, |ui| {
         egui::Frame::NONE.inner_margin(egui::Margin::symmetric(INSET as i8 + 2, 6)).show(ui, |ui| {
-            ui.spacing_mut().item_spacing = vec2(6.0, 5.0);
+            ui.spacing_mut().item_spacing = vec2(6.0, 4.0);
             target_ui(ui, sheet, scope);
-            heading(ui, "Rest poses");
+            heading(ui, "What counts as rest");
             rest_ui(ui, 0, "Source", sheet, scope);
             rest_ui(ui, 1, "Target", sheet, scope);
             heading(ui, "Hold");
             hold_ui(ui, sheet, scope);
             heading(ui, "Joint map");
             map_ui(ui, sheet, scope);
-            heading(ui, "Result");
+            ui.add_space(6.0);
             let is_ready = scope.bench.result().is_some_and(|result| {
                 sheet.facts.is_some_and(|facts| result.skeleton.len() == facts.setting.target.skeleton.len())
             });
@@ -40,7 +45,7 @@ pub(super) fn settings_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>)
 }
 
 fn heading(ui: &mut Ui, words: &str) {
-    ui.add_space(5.0);
+    ui.add_space(3.0);
     ui.label(RichText::new(words).strong());
 }
 
@@ -49,7 +54,15 @@ fn target_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     let names: Vec<String> = scope.bench.project.as_ref().map_or_else(Vec::new, |project| {
         project.document().sources.iter().map(|source| file_name(&source.path)).collect()
     });
-    ui.label(RichText::new("Target").strong());
+    ui.horizontal(|ui| {
+        ui.label(RichText::new("Target").strong());
+        ui.with_layout(egui::Layout::right_to_left(egui::Align::Center), |ui| {
+            let other = ui.button("Another file…").on_hover_text("Open the file whose skeleton is meant");
+            if other.clicked() {
+                scope.out.push(Command::Carry(CarryCommand::Ask(CarrySheet::Onto)));
+            }
+        });
+    });
     let shown = names.get(pass.onto).cloned().unwrap_or_else(|| "not open".to_owned());
     let mut wanted = None;
     let width = (ui.available_width() - 8.0).max(80.0);
@@ -64,9 +77,6 @@ fn target_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     response.response.widget_info(|| WidgetInfo::labeled(Role::ComboBox, true, "Target file"));
     if let Some(onto) = wanted.filter(|&onto| onto != pass.onto) {
         scope.out.push(Command::Carry(CarryCommand::Onto(onto)));
-    }
-    if ui.button("Another file…").on_hover_text("Open the file whose skeleton is meant").clicked() {
-        scope.out.push(Command::Carry(CarryCommand::Ask(CarrySheet::Onto)));
     }
     if let Some(facts) = sheet.facts {
         let figures = [&facts.setting.source, &facts.setting.target];
@@ -128,9 +138,12 @@ fn rest_ui(ui: &mut Ui, which: usize, who: &str, sheet: &Sheet<'_>, scope: &mut 
         change_it(&mut pass);
         pass
     };
-    ui.horizontal(|ui| {
+    ui.horizontal_wrapped(|ui| {
+        // One under the other, whatever the word's width.
+        let start = ui.cursor().left();
         ui.label(who);
-        ui.add_space(2.0);
+        ui.add_space((start + WHO - ui.cursor().left()).max(0.0));
+        straight_ui(ui, which, who, sheet, scope);
         let mut is_frame = rest.frame_secs.is_some();
         let playhead = scope.bench.session.playback.playhead_secs;
         // The target's times are those of its own clip.
@@ -142,7 +155,8 @@ fn rest_ui(ui: &mut Ui, which: usize, who: &str, sheet: &Sheet<'_>, scope: &mut 
         };
         let label = format!("{who} rests as in a frame");
         let has_clip = which == 0 || has_target_clip(scope, pass.onto);
-        let checkbox = ui.add_enabled(has_clip, egui::Checkbox::new(&mut is_frame, "frame at"));
+        let words = if is_frame { "frame at" } else { "of a frame" };
+        let checkbox = ui.add_enabled(has_clip, egui::Checkbox::new(&mut is_frame, words));
         checkbox.widget_info(|| WidgetInfo::selected(Role::CheckBox, has_clip, is_frame, &label));
         if checkbox.on_hover_text(tip).changed() {
             let frame_secs = is_frame.then_some(secs);
@@ -164,16 +178,17 @@ fn rest_ui(ui: &mut Ui, which: usize, who: &str, sheet: &Sheet<'_>, scope: &mut 
             }
         }
     });
-    ui.horizontal(|ui| {
-        ui.add_space(18.0);
-        let mut is_straight = rest.is_straightened;
-        let checkbox = ui.checkbox(&mut is_straight, "straightened");
-        let label = format!("{who} rest straightened");
-        checkbox.widget_info(|| WidgetInfo::selected(Role::CheckBox, true, is_straight, &label));
-        if checkbox.on_hover_text("Arms level and legs down, made of that pose").changed() {
-            change(scope, sheet, changed(&|pass| pass.rests[which].is_straightened = is_straight));
-        }
-    });
+}
+
+fn straight_ui(ui: &mut Ui, which: usize, who: &str, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
+    let mut pass = sheet.pass.1.clone();
+    let is_straight = &mut pass.rests[which].is_straightened;
+    let checkbox = ui.checkbox(is_straight, "straight");
+    let label = format!("{who} rest straightened");
+    checkbox.widget_info(|| WidgetInfo::selected(Role::CheckBox, true, *is_straight, &label));
+    if checkbox.on_hover_text("Arms level and legs down, made of that pose").changed() {
+        change(scope, sheet, pass);
+    }
 }
 
 fn has_target_clip(scope: &Scope<'_>, onto: usize) -> bool {
@@ -182,6 +197,10 @@ fn has_target_clip(scope: &Scope<'_>, onto: usize) -> bool {
 }
 
 fn hold_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
+    ui.horizontal_wrapped(|ui| held_ui(ui, sheet, scope));
+}
+
+fn held_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     let pass = sheet.pass.1;
     let mut plant = pass.plant_feet;
     let feet = ui.checkbox(&mut plant, "Planted feet");
@@ -218,7 +237,7 @@ fn map_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
             CarryCommand::Ask(CarrySheet::SaveMap),
         );
         button(
-            "Keep for these skeletons",
+            "Keep for this pair",
             has_map,
             "The next clip of these two skeletons gets this map at once",
             CarryCommand::KeepMap,

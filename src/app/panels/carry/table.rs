@@ -10,7 +10,7 @@ use super::super::Scope;
 use super::{Sheet, change};
 
 /// Height of the editor below the rows.
-const EDITOR: f32 = 64.0;
+const EDITOR: f32 = 92.0;
 
 pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     let Some(facts) = sheet.facts else {
@@ -34,7 +34,7 @@ pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     let area = ui.available_rect_before_wrap();
     let doubts = &facts.setting.map.doubts;
     let head = Rect::from_min_size(area.min, vec2(area.width(), 20.0));
-    let columns = Columns::of(area);
+    let columns = Columns::of(ui, area, &facts.rows);
     for (x, words) in [
         (columns.target, "Target joint"),
         (columns.source, "driven by"),
@@ -94,11 +94,19 @@ struct Columns {
 }
 
 impl Columns {
-    fn of(area: Rect) -> Self {
-        let names = ((area.width() - 150.0) * 0.36).clamp(80.0, 220.0);
+    /// Names get the room that the longest of them needs, up to a part of the whole; reasons get the rest.
+    fn of(ui: &Ui, area: Rect, rows: &[CarryRow]) -> Self {
+        let most = ((area.width() - 150.0) * 0.36).clamp(80.0, 260.0);
+        let longest = |name: fn(&CarryRow) -> &str, head: &str| {
+            let names = rows.iter().map(name).chain([head]).map(|words| {
+                let font = FontId::proportional(13.0);
+                ui.painter().layout_no_wrap(words.to_owned(), font, egui::Color32::WHITE).size().x
+            });
+            (names.fold(0.0, f32::max) + 16.0).min(most)
+        };
         let target = area.left() + 26.0;
-        let source = target + names;
-        let sure = source + names;
+        let source = target + longest(|row| &row.target_label, "Target joint");
+        let sure = source + longest(|row| &row.source_label, "driven by");
         Self { target, source, sure, why: sure + 52.0, end: area.right() - INSET }
     }
 }
@@ -126,7 +134,7 @@ fn row_ui(
     } else if response.hovered() {
         ui.painter().rect_filled(bounds, 0.0, look.hover);
     }
-    paint_row(ui, row, bounds, columns, &look);
+    paint_row(ui, row, bounds, columns, is_chosen, &look);
     focus_ring(ui, &response);
     if response.has_focus() {
         ui.memory_mut(|memory| {
@@ -152,7 +160,7 @@ fn row_ui(
     }
 }
 
-fn paint_row(ui: &Ui, row: &CarryRow, bounds: Rect, columns: &Columns, look: &Look) {
+fn paint_row(ui: &Ui, row: &CarryRow, bounds: Rect, columns: &Columns, is_chosen: bool, look: &Look) {
     let y = bounds.center().y;
     let words = |from: f32, to: f32, text: &str, ink: egui::Color32| {
         let font = FontId::proportional(13.0);
@@ -171,7 +179,8 @@ fn paint_row(ui: &Ui, row: &CarryRow, bounds: Rect, columns: &Columns, look: &Lo
         ui.painter().rect_filled(Rect::from_center_size(mark, vec2(10.0, 3.0)), 1.0, look.text);
     }
     let is_driven = !matches!(row.state, CarryState::Free | CarryState::KeptAtRest);
-    let ink = if is_driven { look.text } else { look.faint };
+    // Faint words would not be read on the chosen row.
+    let ink = if is_driven || is_chosen { look.text } else { look.faint };
     words(columns.target, columns.source, &row.target_label, ink);
     words(columns.source, columns.sure, &row.source_label, ink);
     let sure = match row.confidence {
@@ -179,7 +188,7 @@ fn paint_row(ui: &Ui, row: &CarryRow, bounds: Rect, columns: &Columns, look: &Lo
         _ => row.state.word().to_owned(),
     };
     words(columns.sure, columns.why, &sure, if row.is_question { look.error } else { ink });
-    words(columns.why, columns.end, &row.reason, look.faint);
+    words(columns.why, columns.end, &row.reason, if is_chosen { look.text } else { look.faint });
 }
 
 /// What drives the chosen joint, to be changed.
@@ -218,7 +227,10 @@ fn editor_ui(ui: &mut Ui, row: &CarryRow, sheet: &Sheet<'_>, scope: &mut Scope<'
         if as_found.on_hover_text("Forget what was said of this joint").clicked() {
             change(scope, sheet, without_link(sheet.pass.1, &row.target_label));
         }
-        let why = egui::RichText::new(&row.reason).size(12.0).color(scope.look.faint);
-        ui.add(egui::Label::new(why).truncate());
     });
+    // Whole where the table cuts it; more than two lines show on hovering.
+    let (font, ink) = (FontId::proportional(12.0), scope.look.faint);
+    let mut why = egui::text::LayoutJob::simple(row.reason.clone(), font, ink, ui.available_width());
+    why.wrap.max_rows = 2;
+    ui.add(egui::Label::new(why)).on_hover_text(&row.reason);
 }
