@@ -5,13 +5,13 @@ use std::path::{Path, PathBuf};
 use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
 use turnwright::app::commands::{Action, CarryCommand, CarrySheet, Command};
-use turnwright::app::paint::CpuRenderer;
 use turnwright::app::view_models::CarryState;
-use turnwright::app::{Screen as _, Start, Window};
+use turnwright::app::{Start, Window};
 use turnwright::exchange::{ClipAddress, OpenOptions, disk, open};
 use turnwright::retarget::{HoldAt, KeptLimits};
 use turnwright::scene::{PassId, RetargetPass};
 
+use crate::gui_harness::window_harness;
 use crate::support::shared;
 
 struct Sheet<'a>(Harness<'a, Option<Window>>);
@@ -19,14 +19,7 @@ struct Sheet<'a>(Harness<'a, Option<Window>>);
 impl Sheet<'_> {
     fn open(clip: &Path, size: [f32; 2]) -> Self {
         let start = Start::Files(vec![ClipAddress { path: clip.to_owned(), clip: None }]);
-        let harness = Harness::builder().with_size(size).renderer(CpuRenderer::new(2)).build_ui_state(
-            move |ui, window: &mut Option<Window>| {
-                let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
-                window.logic(ui.ctx());
-                window.ui(ui);
-            },
-            None,
-        );
+        let harness = window_harness(size, start);
         let mut sheet = Self(harness);
         sheet.run();
         sheet

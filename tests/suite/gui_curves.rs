@@ -10,9 +10,8 @@ use egui_kittest::Harness;
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use glam::DVec3;
 use turnwright::app::commands::{Action, Command, CurveAction, CurveCommand};
-use turnwright::app::paint::CpuRenderer;
 use turnwright::app::view_models::{CurveView, KeyChoice, TimeWindow, seconds};
-use turnwright::app::{Screen as _, Start, Window};
+use turnwright::app::{Start, Window};
 use turnwright::clip::{Clip, FrameGrid, JointTracks, PathKind, RotationTrack, Spacing, Times};
 use turnwright::exchange::{ClipAddress, disk, gltf};
 use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
@@ -20,6 +19,7 @@ use turnwright::rotor::{Bivector, Rotor};
 use turnwright::scene::{Edit, PassStep};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
+use crate::gui_harness::window_harness;
 use crate::support::shared;
 
 /// A window on one clip of its own.
@@ -93,14 +93,7 @@ impl Desk<'_> {
 
     fn of_size(path: PathBuf, folder: tempfile::TempDir, size: [f32; 2]) -> Self {
         let start = Start::Files(vec![ClipAddress { path, clip: None }]);
-        let harness = Harness::builder().with_size(size).renderer(CpuRenderer::new(2)).build_ui_state(
-            move |ui, window: &mut Option<Window>| {
-                let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
-                window.logic(ui.ctx());
-                window.ui(ui);
-            },
-            None,
-        );
+        let harness = window_harness(size, start);
         let mut desk = Self { harness, _folder: folder };
         desk.run();
         desk

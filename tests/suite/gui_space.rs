@@ -5,10 +5,9 @@ use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
 use glam::{DVec2, DVec3};
 use turnwright::app::commands::{Action, Command, SpaceAction, SpaceCommand};
-use turnwright::app::paint::CpuRenderer;
 use turnwright::app::session::{Disc, TurnPlanes};
 use turnwright::app::view_models::Stage;
-use turnwright::app::{Screen as _, Start, Window};
+use turnwright::app::{Start, Window};
 use turnwright::clip::{Clip, PushFrame};
 use turnwright::exchange::ClipAddress;
 use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
@@ -16,19 +15,13 @@ use turnwright::raster::View;
 use turnwright::rotor::Rotor;
 use turnwright::scene::{Edit, PassStep};
 
+use crate::gui_harness::window_harness;
+
 struct Bench<'a>(Harness<'a, Option<Window>>);
 
 impl Bench<'_> {
     fn open(start: Start) -> Self {
-        let harness =
-            Harness::builder().with_size([1440.0, 900.0]).renderer(CpuRenderer::new(2)).build_ui_state(
-                move |ui, window: &mut Option<Window>| {
-                    let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
-                    window.logic(ui.ctx());
-                    window.ui(ui);
-                },
-                None,
-            );
+        let harness = window_harness([1440.0, 900.0], start);
         let mut bench = Self(harness);
         bench.run();
         bench

@@ -6,14 +6,15 @@ use egui::{Event, Modifiers, Pos2};
 use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
 use turnwright::app::commands::{Action, Command, Offer, TimeCommand};
-use turnwright::app::paint::CpuRenderer;
 use turnwright::app::view_models::{HeatKind, SnagFilter, TimeChoice, snag_rows, snag_states};
-use turnwright::app::{Screen as _, Start, Window};
+use turnwright::app::{Start, Window};
 use turnwright::exchange::ClipAddress;
 use turnwright::scene::{ClipWork, PassStep, SmoothPass};
 use turnwright::snag::SnagKind;
 
 use crate::support;
+
+use crate::gui_harness::window_harness;
 
 struct Bench<'a>(Harness<'a, Option<Window>>);
 
@@ -23,14 +24,7 @@ impl Bench<'_> {
     }
 
     fn of_size(start: Start, size: [f32; 2], is_light: bool) -> Self {
-        let harness = Harness::builder().with_size(size).renderer(CpuRenderer::new(2)).build_ui_state(
-            move |ui, window: &mut Option<Window>| {
-                let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
-                window.logic(ui.ctx());
-                window.ui(ui);
-            },
-            None,
-        );
+        let harness = window_harness(size, start);
         let mut bench = Self(harness);
         bench.run();
         if is_light {

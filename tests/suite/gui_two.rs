@@ -6,13 +6,13 @@ use egui::{Key, Modifiers, Pos2};
 use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
 use turnwright::app::commands::{Action, BlendCommand, Command};
-use turnwright::app::paint::CpuRenderer;
 use turnwright::app::view_models::BlendKind;
-use turnwright::app::{Screen as _, Start, Window};
+use turnwright::app::{Start, Window};
 use turnwright::blend::JoinPlace;
 use turnwright::exchange::ClipAddress;
 use turnwright::scene::{BlendForm, BlendPass, ClipRef, LoopPass, PassStep};
 
+use crate::gui_harness::window_harness;
 use crate::support::shared;
 
 struct Bench<'a>(Harness<'a, Option<Window>>);
@@ -20,15 +20,7 @@ struct Bench<'a>(Harness<'a, Option<Window>>);
 impl Bench<'_> {
     fn open(path: PathBuf, clip: Option<&str>) -> Self {
         let start = Start::Files(vec![ClipAddress { path, clip: clip.map(str::to_owned) }]);
-        let harness =
-            Harness::builder().with_size([1440.0, 900.0]).renderer(CpuRenderer::new(2)).build_ui_state(
-                move |ui, window: &mut Option<Window>| {
-                    let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
-                    window.logic(ui.ctx());
-                    window.ui(ui);
-                },
-                None,
-            );
+        let harness = window_harness([1440.0, 900.0], start);
         let mut bench = Self(harness);
         bench.run();
         bench

@@ -5,12 +5,13 @@ use std::path::{Path, PathBuf};
 use egui_kittest::Harness;
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use turnwright::app::commands::{Action, Command};
-use turnwright::app::paint::CpuRenderer;
 use turnwright::app::view_models::SnagState;
 use turnwright::app::{Screen as _, Start, Window};
 use turnwright::exchange::{ClipAddress, OpenOptions, disk, open};
 use turnwright::scene::Pass;
 use turnwright::snag::SnagKind;
+
+use crate::gui_harness::window_harness;
 
 struct Bench<'a>(Harness<'a, Option<Window>>);
 
@@ -21,14 +22,7 @@ impl Bench<'_> {
     }
 
     fn of_size(start: Start, size: [f32; 2]) -> Self {
-        let harness = Harness::builder().with_size(size).renderer(CpuRenderer::new(2)).build_ui_state(
-            move |ui, window: &mut Option<Window>| {
-                let window = window.get_or_insert_with(|| Window::unthreaded(ui.ctx(), start.clone()));
-                window.logic(ui.ctx());
-                window.ui(ui);
-            },
-            None,
-        );
+        let harness = window_harness(size, start);
         let mut bench = Self(harness);
         bench.run();
         bench

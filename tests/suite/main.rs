@@ -30,6 +30,7 @@
 //! | `gui_carry` | the retarget sheet, driven by accessible labels; what is asserted is the document |
 //! | `gui_display` | the real program in a real window under Xvfb, driven by mouse and keyboard |
 //! | `gui_fluid` | the window rests while nothing happens, and shows a change in the next frame |
+//! | `gui_harness` | the whole window without a display, for the tests that drive it; no tests of its own |
 //! | `gui_paint` | the painter of egui's meshes: known pixels, any number of threads |
 //! | `gui_screen` | a screen driven as a person drives it, its picture drawn by our painter |
 //! | `gui_space` | the skeleton view driven by pointer and keys: discs, tips, limits; asserted are the turns of the result |
@@ -80,6 +81,8 @@ mod gui_curves;
 mod gui_display;
 #[cfg(feature = "gui-tests")]
 mod gui_fluid;
+#[cfg(feature = "gui-tests")]
+mod gui_harness;
 #[cfg(feature = "gui-tests")]
 mod gui_paint;
 #[cfg(feature = "gui-tests")]

@@ -3,7 +3,7 @@
 use std::path::PathBuf;
 use std::sync::Arc;
 
-use super::super::bench::{Findings, SourceState, file_name};
+use super::super::bench::file_name;
 use super::super::blend_state::{BlendKey, BlendWork};
 use super::super::commands::BlendCommand;
 use super::super::jobs::Slot;
@@ -13,7 +13,7 @@ use super::super::window::Window;
 use super::answers::Answer;
 use crate::blend::{LoopPart, best_loops};
 use crate::exchange::{self, OpenOptions, Source};
-use crate::scene::{BlendForm, ClipRef, ClipWork, Edit, Others, PassId, PassStep, SourceRef};
+use crate::scene::{BlendForm, ClipRef, ClipWork, Edit, Others, PassId, PassStep};
 
 /// What a job about blends came to.
 #[derive(Debug)]
@@ -109,23 +109,8 @@ impl Window {
     }
 
     fn take_second(&mut self, source: &Arc<Source>) {
-        let Some(project) = &mut self.bench.project else { return };
-        let document = Arc::clone(project.document());
-        let known = document.sources.iter().position(|own| own.path == source.path);
-        let index = known.unwrap_or(document.sources.len());
-        if known.is_none() {
-            let to = SourceRef {
-                path: source.path.clone(),
-                sha256: source.sha256().to_owned(),
-                reading: source.reading.clone(),
-            };
-            let clips: Vec<String> = (0..source.clips.len()).map(|clip| source.clip_label(clip)).collect();
-            // What an undone step had added here is gone with it.
-            project.sources.truncate(index);
-            project.sources.push(SourceState::Ready(Arc::clone(source)));
-            project.findings.truncate(document.works.len());
-            project.findings.extend(clips.iter().map(|_| Findings::default()));
-            self.edit(&Edit::AddSource { source: to, clips });
+        let Some((index, is_new)) = self.add_source(source) else { return };
+        if is_new {
             self.tell(Message::done(format!("Opened {} as well", file_name(&source.path))));
         }
         let other = ClipRef { source: index, clip: 0 };

@@ -3,7 +3,7 @@
 use std::path::PathBuf;
 use std::sync::Arc;
 
-use super::super::bench::{Findings, SourceState, file_name};
+use super::super::bench::{SourceState, file_name};
 use super::super::carry_state::{CarryKey, CarryMeasured, CarryWork};
 use super::super::commands::{CarryCommand, CarrySheet};
 use super::super::jobs::Slot;
@@ -13,7 +13,7 @@ use super::super::window::Window;
 use super::answers::Answer;
 use crate::exchange::{self, Guard, OpenOptions, Source, disk, joint_maps};
 use crate::retarget::{Figure, HoldAt, read_map, write_map};
-use crate::scene::{Edit, Others, PassId, PassStep, RetargetPass, SourceRef};
+use crate::scene::{Edit, Others, PassId, PassStep, RetargetPass};
 use crate::skeleton::Skeleton;
 use crate::skeleton::roles::Role;
 
@@ -131,29 +131,6 @@ impl Window {
             });
             Some(Answer::Carry(CarryAnswer::Opened(serial, result)))
         });
-    }
-
-    /// Adds a file to the document unless it is there; its index.
-    fn add_source(&mut self, source: &Arc<Source>) -> Option<usize> {
-        let project = self.bench.project.as_mut()?;
-        let document = Arc::clone(project.document());
-        if let Some(known) = document.sources.iter().position(|own| own.path == source.path) {
-            return Some(known);
-        }
-        let index = document.sources.len();
-        let to = SourceRef {
-            path: source.path.clone(),
-            sha256: source.sha256().to_owned(),
-            reading: source.reading.clone(),
-        };
-        let clips: Vec<String> = (0..source.clips.len()).map(|clip| source.clip_label(clip)).collect();
-        // What an undone step had added here is gone with it.
-        project.sources.truncate(index);
-        project.sources.push(SourceState::Ready(Arc::clone(source)));
-        project.findings.truncate(document.works.len());
-        project.findings.extend(clips.iter().map(|_| Findings::default()));
-        self.edit(&Edit::AddSource { source: to, clips });
-        Some(index)
     }
 
     /// By the pass that is shown, else by a new one, with the corrections kept for the two skeletons.
@@ -308,7 +285,7 @@ impl Window {
             }
             CarryAnswer::Opened(serial, result) if now == Some(serial) => match result {
                 Ok(source) => {
-                    if let Some(index) = self.add_source(&source) {
+                    if let Some((index, _)) = self.add_source(&source) {
                         self.carry_onto(index);
                     }
                 }

@@ -5,7 +5,7 @@ use std::sync::Arc;
 
 use egui::Context;
 
-use super::super::bench::SourceState;
+use super::super::bench::{Findings, SourceState};
 use super::super::file_picker::Purpose;
 use super::super::jobs::Slot;
 use super::super::panels::{Dialog, Form, Message, Then};
@@ -48,6 +48,29 @@ fn is_scene(path: &Path) -> bool {
 }
 
 impl Window {
+    /// Adds a file to the document unless it is there; its index, and whether it is new.
+    pub(super) fn add_source(&mut self, source: &Arc<Source>) -> Option<(usize, bool)> {
+        let project = self.bench.project.as_mut()?;
+        let document = Arc::clone(project.document());
+        if let Some(known) = document.sources.iter().position(|own| own.path == source.path) {
+            return Some((known, false));
+        }
+        let index = document.sources.len();
+        let to = SourceRef {
+            path: source.path.clone(),
+            sha256: source.sha256().to_owned(),
+            reading: source.reading.clone(),
+        };
+        let clips: Vec<String> = (0..source.clips.len()).map(|clip| source.clip_label(clip)).collect();
+        // What an undone step had added here is gone with it.
+        project.sources.truncate(index);
+        project.sources.push(SourceState::Ready(Arc::clone(source)));
+        project.findings.truncate(document.works.len());
+        project.findings.extend(clips.iter().map(|_| Findings::default()));
+        self.edit(&Edit::AddSource { source: to, clips });
+        Some((index, true))
+    }
+
     /// Does it, or asks about unsaved work first.
     pub(super) fn open_or_ask(&mut self, then: Then) {
         let is_unsaved = self.bench.project.as_ref().is_some_and(|project| project.history.is_unsaved());
