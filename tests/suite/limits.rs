@@ -16,7 +16,7 @@ use turnwright::scene::{ClipWork, Document, Edit, LimitsPass, NoOthers, SourceRe
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 use turnwright::snag::{self, SnagKind, Unwatched};
 
-use crate::strategies::unit_rotor;
+use crate::strategies::{same_cases, unit_rotor};
 use crate::support::{assert_close, number, numbers, shared_json, unit_rotor as rotor_of};
 
 fn sides() -> impl Strategy<Value = [f64; 4]> {
@@ -46,7 +46,7 @@ fn clamps() -> [Clamp; 3] {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig::with_cases(2000))]
+    #![proptest_config(same_cases(2000))]
 
     /// A clamped turn reads as inside; clamping it hard again changes no bit.
     #[test]

@@ -15,7 +15,7 @@ use turnwright::rotor::{
 };
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
-use crate::strategies::{unit_rotor, unit_vector};
+use crate::strategies::{same_cases, unit_rotor, unit_vector};
 use crate::support::{Tally, assert_close, list, number, numbers, shared_json, unit_rotor as read_rotor};
 
 const SMOOTH: [PathKind; 3] = [PathKind::Squad, PathKind::Spline, PathKind::BSpline];
@@ -265,7 +265,7 @@ fn mixed_track() -> impl Strategy<Value = RotationTrack> {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig::with_cases(150))]
+    #![proptest_config(same_cases(150))]
 
     #[test]
     fn derivatives_are_those_of_what_is_played(track in mixed_track(), segment in 0..6_usize, share in 0.03..0.97_f64) {

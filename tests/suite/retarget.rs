@@ -18,6 +18,7 @@ use turnwright::skeleton::roles::{Role, Side};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use crate::roles::{A, B, Build, D, person};
+use crate::strategies::same_cases;
 use crate::support::{Tally, assert_close, list, numbers, shared, shared_json, unit_rotor};
 
 /// Every joint sways, each in its own way; the root walks.
@@ -263,7 +264,7 @@ fn any_place() -> impl Strategy<Value = DVec3> {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig::with_cases(24))]
+    #![proptest_config(same_cases(24))]
 
     #[test]
     fn what_the_source_hangs_under_does_not_matter(
