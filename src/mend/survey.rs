@@ -1,15 +1,16 @@
 //! Finds all snags of a clip, kind by kind, each on what the mends before it left.
 
 use std::collections::BTreeSet;
-use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
+use std::sync::{Arc, OnceLock};
 
 use rayon::prelude::*;
 
 use crate::clip::{Clip, RotationTrack};
 use crate::limit::Limits;
 use crate::snag::{
-    Cancelled, Memory, Progress, Remedy, Snag, SnagKind, find, find_in_clip, find_past_limit, find_with,
+    Cancelled, Memory, Progress, Remedy, Snag, SnagKind, find, find_half_turns, find_in_clip,
+    find_past_limit, find_with, preset_limits,
 };
 
 use super::apply::{apply_all, asks_others, change_of_keys_rad, change_rad, mend};
@@ -20,7 +21,8 @@ use super::draft::Draft;
 pub struct SurveyOptions {
     /// The kinds; their order does not matter.
     pub kinds: Vec<SnagKind>,
-    /// Limits to hold the joints against; without any there is no [`SnagKind::PastLimit`].
+    /// Limits to hold the joints against; without any there is no [`SnagKind::PastLimit`]. They also help to tell which side of a
+    /// half-turn is the wrong one; without any the preset for a human figure does.
     pub limits: Option<Arc<Limits>>,
 }
 
@@ -90,6 +92,12 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
         found.extend(snags);
         working.joints[joint] = own.joints[joint].clone();
     }
+    // Worked out when the first joint that jumps asks for them.
+    let preset = OnceLock::new();
+    let side_limits = || match &options.limits {
+        Some(limits) => Some(&**limits),
+        None => preset.get_or_init(|| preset_limits(clip)).as_ref(),
+    };
     for kind in others {
         if kind.is_of_clip() {
             found.extend(of_clip(&mut working, kind));
@@ -105,7 +113,12 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
                 if stopped.load(Ordering::Relaxed) {
                     return JointOutcome::default();
                 }
-                let outcome = one_joint(&working, joint, kind, options.limits.as_deref());
+                let snags = match (kind, options.limits.as_deref()) {
+                    (SnagKind::PastLimit, Some(limits)) => find_past_limit(&working, joint, limits),
+                    (SnagKind::HalfTurn, _) => find_half_turns(&working, joint, &side_limits),
+                    _ => find(&working, joint, kind),
+                };
+                let outcome = one_joint(&working, joint, snags);
                 if !progress.report(done.fetch_add(1, Ordering::Relaxed) + 1, total) {
                     stopped.store(true, Ordering::Relaxed);
                 }
@@ -242,11 +255,7 @@ struct JointOutcome {
     asking: Vec<Snag>,
 }
 
-fn one_joint(clip: &Clip, joint: usize, kind: SnagKind, limits: Option<&Limits>) -> JointOutcome {
-    let snags = match (kind, limits) {
-        (SnagKind::PastLimit, Some(limits)) => find_past_limit(clip, joint, limits),
-        _ => find(clip, joint, kind),
-    };
+fn one_joint(clip: &Clip, joint: usize, snags: Vec<Snag>) -> JointOutcome {
     if snags.iter().any(asks_others) {
         return JointOutcome { asking: snags, ..JointOutcome::default() };
     }

@@ -1,6 +1,9 @@
 //! The door to the finders.
 
+use std::cell::OnceCell;
+
 use crate::clip::Clip;
+use crate::limit::{Limits, adult};
 
 use super::{
     Memory, Snag, SnagKind, broken_value, half_turn, jitter, long_way, mirrored_angles, seam, sign_flip,
@@ -23,7 +26,10 @@ pub fn find_with(clip: &Clip, joint: usize, kind: SnagKind, memory: &mut Memory)
         SnagKind::Wrap => wrap::find(clip, joint, memory),
         SnagKind::MirroredAngles => mirrored_angles::find(clip, joint, memory),
         SnagKind::LongWay => long_way::find(clip, joint, memory),
-        SnagKind::HalfTurn => half_turn::find(clip, joint),
+        SnagKind::HalfTurn => {
+            let adult = OnceCell::new();
+            half_turn::find_half_turns(clip, joint, &|| adult.get_or_init(|| preset_limits(clip)).as_ref())
+        }
         SnagKind::Spike => spike::find(clip, joint),
         SnagKind::Stuck => stuck::find(clip, joint),
         SnagKind::Jitter => jitter::find(clip, joint),
@@ -35,6 +41,12 @@ pub fn find_with(clip: &Clip, joint: usize, kind: SnagKind, memory: &mut Memory)
     };
     snags.sort_by_key(|snag| (snag.first_key, snag.last_key));
     snags
+}
+
+/// Limits for telling which side of a jump is the wrong one, where none are given: those of the preset for a human figure, by its rest
+/// pose alone, since how it moves is in question. `None` for other figures.
+pub fn preset_limits(clip: &Clip) -> Option<Limits> {
+    adult::limits(&clip.skeleton).ok().map(|adult| adult.limits)
 }
 
 /// Finds the snags of one kind in all joints of `clip` as it is, by joint and key. Cheaper than [`find`] for each joint where the kind is

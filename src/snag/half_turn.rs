@@ -1,16 +1,20 @@
 //! Runs of keys in which a joint sits about half a turn off its neighbours.
 
+mod sides;
+
 use std::f64::consts::PI;
 
 use glam::DVec3;
 
 use crate::clip::{Clip, PathKind};
+use crate::limit::Limits;
 use crate::rotor::{Bivector, Rotor};
 
 use super::border::{Offset, Side, joined, offset_at, offset_in_few};
 use super::roughness::angle_of_dot;
 use super::scan::{Finding, Scan};
 use super::{Remedy, Snag, SnagKind};
+use sides::{Evidence, Sides};
 
 /// With fewer keys nothing can be said about what is usual.
 const LEAST_KEYS: usize = 8;
@@ -51,8 +55,28 @@ const CALIBRATION_KEYS: usize = 2;
 const SNAP_SIGMAS: f64 = 3.0;
 const SNAP_RAD: f64 = 3.0 / 180.0 * PI;
 
-/// Finds half-turns of one joint.
-pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
+/// How much dearer, or cheaper, what witnesses speak for makes a key that is off, beside a price of 1 for the whole clip; and how
+/// much of what they say counts. All together they outweigh all but a tenth of the clip, the least of them where both sides are about as long.
+const WITNESS_COST: f64 = 2.0;
+const MOST_EVIDENCE: f64 = 0.6;
+
+/// The first pose is only given up where that is better by so much.
+const FIRST_POSE_COST: f64 = 0.1;
+
+/// From here on witnesses are clear.
+const CLEAR_EVIDENCE: f64 = 0.4;
+const CONTRARY_EVIDENCE: f64 = -0.15;
+
+/// Finds half-turns of one joint of `clip`. Of the two sides of a jump the wrong one is told by the whole clip: by the motion at
+/// both ends of a run, how long it is, what the joints above do, by `limits` where the joint has one there, by the joint on the other
+/// side of the body, and by where the limb and its child point. `limits` is asked for only where the joint jumps.
+pub fn find_half_turns<'a>(clip: &Clip, joint: usize, limits: &dyn Fn() -> Option<&'a Limits>) -> Vec<Snag> {
+    let mut snags = find(clip, joint, limits);
+    snags.sort_by_key(|snag| (snag.first_key, snag.last_key));
+    snags
+}
+
+fn find<'a>(clip: &Clip, joint: usize, limits: &dyn Fn() -> Option<&'a Limits>) -> Vec<Snag> {
     let Some(scan) = Scan::new(clip, joint).filter(|scan| scan.track.keys.len() >= LEAST_KEYS) else {
         return Vec::new();
     };
@@ -62,8 +86,10 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     }
     let poses = poses(&scan);
     let secs: Vec<f64> = scan.track.times.iter().collect();
-    let above = runs_above(&scan, &jumps);
-    let motion = Motion { scan, poses, secs, jumps, above };
+    let limits = limits();
+    let above = runs_above(&scan, &jumps, limits);
+    let sides = Sides::new(scan, &jumps, limits);
+    let motion = Motion { scan, poses, secs, jumps, above, sides };
     let runs = motion.runs();
     let lone = motion.lone_jumps(&runs);
     runs.into_iter().filter_map(|run| motion.snag(run)).chain(lone).collect()
@@ -71,7 +97,7 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
 
 /// The runs of the nearest joint above that jumps at the same times as this one, as keys of this joint; a joint that turns
 /// along with another is off when that one is.
-fn runs_above(scan: &Scan<'_>, own: &[usize]) -> Vec<Run> {
+fn runs_above(scan: &Scan<'_>, own: &[usize], limits: Option<&Limits>) -> Vec<Run> {
     let skeleton = &scan.clip.skeleton;
     let above =
         std::iter::successors(skeleton.parent_joint(scan.joint), |&up| skeleton.parent_joint(up)).take(2);
@@ -84,7 +110,8 @@ fn runs_above(scan: &Scan<'_>, own: &[usize]) -> Vec<Run> {
         if shared * 2 > own.len() {
             let poses = poses(&other);
             let secs = other.track.times.iter().collect();
-            return Motion { scan: other, poses, secs, jumps, above: Vec::new() }.runs();
+            let sides = Sides::new(other, &jumps, limits);
+            return Motion { scan: other, poses, secs, jumps, above: Vec::new(), sides }.runs();
         }
     }
     Vec::new()
@@ -182,6 +209,17 @@ struct Motion<'a> {
     jumps: Vec<usize>,
     /// Runs of a joint above that jumps along.
     above: Vec<Run>,
+    sides: Sides<'a>,
+}
+
+/// How far a run is off.
+struct RunOffset {
+    side: Side,
+    offset: Offset,
+    /// Ways in and out differ by so much.
+    apart_rad: f64,
+    /// It has both.
+    is_inside: bool,
 }
 
 /// A run of keys that are off: `first..=last`.
@@ -228,7 +266,7 @@ impl Motion<'_> {
         let mut runs = Vec::new();
         let from_start = Run { first: 0, last: key(0) - 1 };
         // The first pose is believed where both ways are nearly as good.
-        if key(0) > CALIBRATION_KEYS && self.cost(from_start) * 1.2 + best[1].0 < best[0].0 {
+        if key(0) > CALIBRATION_KEYS && self.cost(from_start) + FIRST_POSE_COST + best[1].0 < best[0].0 {
             runs.push(from_start);
             walk(1, &mut runs);
         } else {
@@ -237,9 +275,14 @@ impl Motion<'_> {
         runs
     }
 
-    /// 0 for a short run that is entered and left by the same offset; above 1 for what is better left alone.
+    /// Near 0 for a short run that is entered and left by the same offset; above 1 for what is better left alone. What speaks for its
+    /// being off makes it less.
     fn cost(&self, run: Run) -> f64 {
-        let share = (run.last + 1 - run.first) as f64 / self.poses.len() as f64;
+        let share = || {
+            let share = (run.last + 1 - run.first) as f64 / self.poses.len() as f64;
+            let speaks = self.evidence(run).sum().clamp(-MOST_EVIDENCE, MOST_EVIDENCE);
+            share * (1.0 - WITNESS_COST * speaks)
+        };
         match self.ends(run, Side::Bone) {
             [Some(a), Some(b)] => {
                 let parent = match self.ends(run, Side::Parent) {
@@ -248,18 +291,18 @@ impl Motion<'_> {
                 };
                 let apart = a.turn.turn_to(b.turn).min(parent) / APART_RAD;
                 if self.above.is_empty() {
-                    share + apart
+                    share() + apart
                 } else if self.above.contains(&run) {
                     0.3 * apart
                 } else {
-                    1.0 + share + apart
+                    1.0 + share() + apart
                 }
             }
             // Half the price of two jumps left alone: one end proves less.
             [Some(one), None] | [None, Some(one)] => {
                 let seam = if run.first > 0 { run.first } else { run.last + 1 };
                 let is_full = one.turn.turn() >= LONE_RAD && !is_cut(&self.scan, seam);
-                if is_full { 0.2 + share } else { 10.0 }
+                if is_full { 0.2 + share() } else { 10.0 }
             }
             [None, None] => 10.0,
         }
@@ -291,7 +334,8 @@ impl Motion<'_> {
         self.jumps.iter().find(|&&jump| jump > key + 1).map_or(self.poses.len() - 1, |jump| jump - 1)
     }
 
-    fn snag(&self, run: Run) -> Option<Snag> {
+    /// The offset of a run, on the side where it fits best.
+    fn offset(&self, run: Run) -> Option<RunOffset> {
         let both = [Side::Bone, Side::Parent].map(|side| (side, self.ends(run, side)));
         let apart = |ends: &[Option<Offset>; 2]| match ends {
             [Some(a), Some(b)] => a.turn.turn_to(b.turn),
@@ -304,22 +348,49 @@ impl Motion<'_> {
             [Some(one), None] | [None, Some(one)] => one,
             [None, None] => return None,
         };
-        let apart = apart(&ends);
+        let is_inside = ends.iter().all(Option::is_some);
+        Some(RunOffset { side, offset, apart_rad: apart(&ends), is_inside })
+    }
+
+    /// What speaks for a run's being the wrong side, besides how it is entered and left.
+    fn evidence(&self, run: Run) -> Evidence {
+        let Some(RunOffset { side, offset, .. }) = self.offset(run) else { return Evidence::default() };
+        let back = offset.turn.reverse();
+        self.sides.of((run.first, run.last), |pose| match side {
+            Side::Bone => pose * back,
+            Side::Parent => back * pose,
+        })
+    }
+
+    fn snag(&self, run: Run) -> Option<Snag> {
+        let RunOffset { side, offset, apart_rad, is_inside } = self.offset(run)?;
         let turn_rad = offset.turn.turn();
         let is_few = run.last - run.first < FEW;
         if is_few && turn_rad < FULL_RAD {
             return None;
         }
         let offset = self.snapped(offset, side);
-        let is_sure = turn_rad >= FULL_RAD && apart <= AGREE_RAD && ends.iter().all(Option::is_some);
+        let evidence = self.evidence(run);
+        let speaks = evidence.sum();
+        // One end proves less, and so does a run that goes along with a joint above, whose witnesses count.
+        let is_witnessed = if is_inside {
+            speaks > CONTRARY_EVIDENCE || self.above.contains(&run)
+        } else {
+            speaks >= CLEAR_EVIDENCE
+        };
+        let is_sure = turn_rad >= FULL_RAD && apart_rad <= AGREE_RAD && is_witnessed;
         let back = offset.reverse();
         let scan = &self.scan;
-        let text = self.text(run);
+        let text = format!("{}; {}{}", self.what(run), self.why(run, speaks), evidence.words());
         Some(scan.snag(Finding {
             kind: SnagKind::HalfTurn,
             keys: (run.first, run.last),
             size_rad: turn_rad,
-            confidence: if is_sure { 0.95 } else { 0.6 },
+            confidence: match (is_sure, is_inside) {
+                (true, true) => 0.95,
+                (true, false) => 0.85,
+                (false, _) => 0.6,
+            },
             remedy: if side == Side::Bone { Remedy::TakeOut(back) } else { Remedy::TakeOutAbove(back) },
             safe: is_sure,
             text,
@@ -356,12 +427,8 @@ impl Motion<'_> {
             .collect()
     }
 
-    fn text(&self, run: Run) -> String {
-        format!("{}; {}", self.what(run), self.why(run))
-    }
-
-    /// Why this side of the jumps is taken for the wrong one.
-    fn why(&self, run: Run) -> String {
+    /// Why this side of the jumps is taken for the wrong one, as far as the row of poses tells; `speaks` is what the witnesses say.
+    fn why(&self, run: Run, speaks: f64) -> String {
         let (count, own) = (self.poses.len(), run.last + 1 - run.first);
         if self.above.contains(&run) {
             return "it goes along with a joint above that flips at the same frames".to_owned();
@@ -375,7 +442,17 @@ impl Motion<'_> {
                     "the {own} frames between are off, though most of the clip: they are entered and left by one turn"
                 )
             }
-            _ => format!("of {count} frames these {own} are taken for the wrong side, being fewer"),
+            _ if own * 2 <= count => {
+                format!("of {count} frames these {own} are taken for the wrong side, being fewer")
+            }
+            _ if speaks > 0.0 => {
+                format!(
+                    "of {count} frames these {own} are taken for the wrong side, though more: the pose itself tells"
+                )
+            }
+            _ => format!(
+                "of {count} frames these {own} are taken for the wrong side, since it flips more than once"
+            ),
         }
     }
 

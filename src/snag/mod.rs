@@ -25,8 +25,9 @@ mod spike;
 mod stuck;
 mod wrap;
 
-pub use find::{find, find_in_clip, find_with};
+pub use find::{find, find_in_clip, find_with, preset_limits};
 pub use finding::{LoopClose, LoopForm, Plant, Remedy, Snag};
+pub use half_turn::find_half_turns;
 pub use kind::{NoSuchKind, SnagKind};
 pub use memory::Memory;
 pub use past_limit::find_past_limit;

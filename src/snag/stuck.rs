@@ -27,11 +27,14 @@ const LIVE: f64 = 5.0;
 /// As long as no more than this share of its other steps repeats.
 const LIVE_REPEATS: f64 = 0.02;
 
-/// A joint that is still in more than this share of its steps, or that has more long rests than this many and one for each
-/// so many seconds, rests by habit.
+/// A joint that has more long rests than this many and one for each so many seconds rests by habit. One that is still in more than this share
+/// of its steps does too, so that only a rest in the midst of motion, which it then catches up with, is told.
 const HABIT_SHARE: f64 = 0.5;
 const HABIT_RUNS: usize = 4;
 const HABIT_SECS: f64 = 1.0;
+
+/// With fewer steps in which it moves a joint shows nothing of how it does.
+const LEAST_MOVING: usize = 2 * NEAR;
 
 /// Steps on each side of a run that tell how the joint moves there.
 const NEAR: usize = 4;
@@ -114,10 +117,12 @@ struct Habits {
     is_live: bool,
     /// Whether it stops and goes on abruptly time and again.
     has_manner: bool,
+    /// Whether it is still most of the time.
+    is_still: bool,
 }
 
 impl Habits {
-    /// `None` for a joint that rests by habit, or that hardly ever moves.
+    /// `None` for a joint that has many rests, or that never moves.
     fn new(scan: &Scan<'_>, rests: &[Rest]) -> Option<Self> {
         let count = scan.track.keys.len();
         let secs = scan.secs(count - 1) - scan.secs(0);
@@ -127,16 +132,20 @@ impl Habits {
         let resting: usize = rests.iter().map(|rest| rest.last + 1 - rest.first).sum();
         let mut moving: Vec<f64> =
             (1..count).map(|key| step(scan, key)).filter(|own| *own > STILL_RAD).collect();
-        if (moving.len() as f64) < (1.0 - HABIT_SHARE) * (count - 1) as f64 {
+        if moving.len() < LEAST_MOVING {
             return None;
         }
+        let is_still = (moving.len() as f64) < (1.0 - HABIT_SHARE) * (count - 1) as f64;
         let repeats = (count - 1 - moving.len()).saturating_sub(resting) as f64;
         let rank = (SMALLEST_SHARE * moving.len() as f64) as usize;
         let smallest = *moving.select_nth_unstable_by(rank, f64::total_cmp).1;
         let abrupt = |rest: &&Rest| Ends::new(scan, **rest).is_some_and(|ends| ends.is_very_abrupt());
         Some(Self {
             has_manner: rests.iter().filter(abrupt).count() > MANNER,
-            is_live: repeats <= LIVE_REPEATS * moving.len() as f64 && smallest >= LIVE * STILL_RAD,
+            is_still,
+            is_live: !is_still
+                && repeats <= LIVE_REPEATS * moving.len() as f64
+                && smallest >= LIVE * STILL_RAD,
         })
     }
 }
@@ -220,7 +229,7 @@ fn judge(scan: &Scan<'_>, habits: &Habits, rest: Rest) -> Option<Snag> {
         (true, true) => 0.95,
         (true, false) if ends.abruptness >= ABRUPT && !ends.is_even && !is_found_again(scan, rest) => 0.8,
         (false, true) if is_inside && ends.is_very_abrupt() => 0.6,
-        (false, false) if is_inside && ends.is_very_abrupt() && !habits.has_manner => 0.5,
+        (false, false) if is_inside && ends.is_very_abrupt() && !habits.has_manner && !habits.is_still => 0.5,
         _ => return None,
     };
     let along = Along::new(scan, rest);

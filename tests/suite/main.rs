@@ -18,6 +18,7 @@
 //! | `gltf_write` | glTF and GLB files, writing: patches that leave the rest alone, new files of clips |
 //! | `gltf` | glTF and GLB files, reading: counts of every outside file, playing by the formulas of the standard |
 //! | `golden` | comparing a picture with the one a person accepted |
+//! | `half_turn_sides` | which side of a flip is taken for the wrong one, in captures with flips longer than what is right |
 //! | `ground_faults` | seams planted into real loops and slides under real feet: found, closed, held |
 //! | `hostile` | a hundred thousand damaged files of every format: no panic, no hang, no memory beyond the bound |
 //! | `layers` | layers point down only, and the window's libraries stay in `app` |
@@ -103,6 +104,7 @@ mod gui_time;
 mod gui_two;
 #[cfg(feature = "gui-tests")]
 mod gui_window;
+mod half_turn_sides;
 mod hostile;
 mod layers;
 mod limits;

@@ -460,7 +460,8 @@ const LEAST_PRECISION: f64 = 0.97;
 
 fn least_recall(kind: SnagKind, coarse: bool) -> f64 {
     match kind {
-        SnagKind::Spike | SnagKind::Stuck if coarse => 0.87,
+        SnagKind::Spike if coarse => 0.87,
+        SnagKind::Stuck if coarse => 0.83,
         SnagKind::HalfTurn | SnagKind::Spike => 0.95,
         SnagKind::Jitter if coarse => 0.8,
         SnagKind::Stuck => 0.9,
@@ -475,13 +476,15 @@ fn most_error_deg(kind: SnagKind, coarse: bool, slerp: f64, was: f64) -> f64 {
     let most: f64 = match kind {
         SnagKind::SignFlip | SnagKind::Wrap | SnagKind::MirroredAngles | SnagKind::LongWay => 1e-3,
         // Where it moves fast between few poses a gap of three is no better known than slerp tells.
-        SnagKind::Stuck | SnagKind::Spike if coarse => slerp,
+        SnagKind::Spike if coarse => slerp,
+        SnagKind::Stuck if coarse => 1.05 * slerp,
         SnagKind::Stuck => 0.65 * slerp,
         SnagKind::Jitter if coarse => 0.6 * was,
         SnagKind::Jitter => 0.4 * was,
         _ => 0.3,
     };
-    if kind == SnagKind::Jitter { most } else { most.min(slerp + 1e-6) }
+    let is_bounded = kind != SnagKind::Jitter && !(coarse && kind == SnagKind::Stuck);
+    if is_bounded { most.min(slerp + 1e-6) } else { most }
 }
 
 /// Whether a kind is wanted: `PLANTER_KINDS` names those that are, for a quick look at one of them.
