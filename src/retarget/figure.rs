@@ -6,7 +6,7 @@ use glam::{DMat3, DVec3};
 
 use crate::rotor::Rotor;
 use crate::skeleton::roles::{Role, Roles, Side};
-use crate::skeleton::{LocalPose, Skeleton, Transform};
+use crate::skeleton::{JointKind, LocalPose, Skeleton, Transform};
 
 /// A skeleton in the pose that counts as its rest, with the roles of its joints.
 #[derive(Clone, Debug, PartialEq)]
@@ -114,6 +114,15 @@ impl Figure {
         } else {
             (shape.height > 0.0).then_some(shape.height)
         }
+    }
+
+    /// The origin that the figure is placed from: that of the topmost carrier above it, else the scene's.
+    pub(super) fn origin(&self) -> DVec3 {
+        let joints = self.skeleton.joints();
+        let any = self.roles.joint(Role::Hips).or(self.root).or_else(|| self.skeleton.listed().next());
+        let top = std::iter::successors(any, |&joint| joints[joint].parent).last();
+        let carrier = top.filter(|&joint| joints[joint].kind == JointKind::Carrier);
+        carrier.map_or(DVec3::ZERO, |joint| self.roles.shape.positions[joint])
     }
 
     /// What carries the parent's frame of a joint to the scene at rest.

@@ -249,10 +249,11 @@ fn root(clip: &Clip, source: &Figure, target: &Figure, map: &JointMap) -> Option
     };
     let anchors = [middle(source, &follows), middle(target, &follow_target)];
     let offset = t.rotations[link.target].reverse().apply(anchors[1] - t.positions[link.target]);
-    let hips_height = t.positions[link.target].dot(t.up);
-    // A rest pose hung up at its hips stands on no ground of its own.
+    // A rest pose hung up at its hips stands on no ground of its own: that is where the scene has it, or what carries the figure.
+    let origin = target.origin().dot(t.up);
+    let hips_height = t.positions[link.target].dot(t.up) - origin;
     let hangs = t.leg_length > 0.0 && hips_height.abs() < 0.15 * t.leg_length;
-    let ground = if hangs { 0.0 } else { t.ground };
+    let ground = if hangs { origin } else { t.ground };
     let has_feet =
         |figure: &Figure| Side::BOTH.iter().all(|&side| figure.roles.joint(Role::Foot(side)).is_some());
     let with_ankles = has_feet(source) && has_feet(target);

@@ -287,22 +287,42 @@ proptest! {
     fn what_the_target_hangs_under_turns_and_sizes_it_only(
         rotation in any_turn(), size in 0.01..100.0_f64, translation in any_place(),
     ) {
-        let clip = sway(&Arc::new(person(&B).skeleton()), 12, 1.0);
-        let bare = person(&D).map_places(|p| DVec3::new(1.2 * p.x, 0.8 * p.y, p.z)).skeleton();
-        let expected = plain(&clip, &Arc::new(bare.clone()));
-        let carrier = Transform { translation, rotation, scale: DVec3::splat(size) };
-        let found = plain(&clip, &hung(&bare, carrier));
-        let scene: DAffine3 = carrier.to_affine();
-        for frame in 0..clip.grid.count() {
-            let secs = clip.grid.time(frame);
-            let [own, its] = [expected.world_at(secs), found.world_at(secs)];
-            for (own, its) in own.iter().zip(&its[1..]) {
-                prop_assert!((rotation * own.rotation).turn_to(its.rotation) < 1e-8);
-                let place = scene.transform_point3(own.position());
-                prop_assert!(place.distance(its.position()) < 1e-8 * size, "{} {}", place, its.position());
+        let found = below_a_carrier(Transform { translation, rotation, scale: DVec3::splat(size) });
+        prop_assert_eq!(found, Ok(()));
+    }
+}
+
+/// The result below a carrier is the carrier's own transform of the bare result.
+fn below_a_carrier(carrier: Transform) -> Result<(), String> {
+    let clip = sway(&Arc::new(person(&B).skeleton()), 12, 1.0);
+    let bare = person(&D).map_places(|p| DVec3::new(1.2 * p.x, 0.8 * p.y, p.z)).skeleton();
+    let expected = plain(&clip, &Arc::new(bare.clone()));
+    let found = plain(&clip, &hung(&bare, carrier));
+    let scene: DAffine3 = carrier.to_affine();
+    for frame in 0..clip.grid.count() {
+        let secs = clip.grid.time(frame);
+        let [own, its] = [expected.world_at(secs), found.world_at(secs)];
+        for (joint, (own, its)) in own.iter().zip(&its[1..]).enumerate() {
+            let turn = (carrier.rotation * own.rotation).turn_to(its.rotation);
+            let off = scene.transform_point3(own.position()).distance(its.position());
+            if turn >= 1e-8 || off >= 1e-8 * carrier.scale.x {
+                return Err(format!("frame {frame}, joint {joint}: {turn:e} rad and {off:e} off"));
             }
         }
     }
+    Ok(())
+}
+
+/// A carrier that tilts the figure's up by 24° and lets it stand with its hips at the height of the scene's origin.
+#[test]
+fn a_carrier_that_leaves_the_figure_nearly_upright_turns_and_sizes_it_only() {
+    let rotation = Rotor::from_parts(
+        0.505_465_592_131_367_9,
+        Bivector::new(0.0, 0.837_382_067_033_260_8, 0.208_076_449_850_503_86),
+    );
+    let translation = DVec3::new(-3.512_801_766_451_931_8, -1.673_019_376_848_186_2, -4.001_900_366_773_886);
+    let carrier = Transform { translation, rotation, scale: DVec3::splat(4.606_649_180_092_305) };
+    assert_eq!(below_a_carrier(carrier), Ok(()));
 }
 
 /// Directions of arms and legs in the scene.

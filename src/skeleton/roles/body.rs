@@ -6,7 +6,7 @@ use glam::DVec3;
 
 use crate::rotor::Rotor;
 
-use super::figure::Figure;
+use super::figure::{Figure, ROUNDING, rank};
 use super::limbs::{self, Reading};
 use super::name::Part;
 use super::pairs::{Pair, Pairs};
@@ -81,7 +81,7 @@ pub(super) fn plan(figure: &Figure<'_>, root: usize) -> Plan {
             })
             .collect();
         let mut order: Vec<usize> = (0..pairs.len()).collect();
-        order.sort_by(|&a, &b| leg_fit[b].total_cmp(&leg_fit[a]).then(a.cmp(&b)));
+        order.sort_by_key(|&index| (std::cmp::Reverse(rank(leg_fit[index])), index));
         let mut legs_to_try: Vec<Option<usize>> = order.iter().take(4).map(|&index| Some(index)).collect();
         legs_to_try.push(None);
         for legs in legs_to_try {
@@ -330,7 +330,8 @@ fn trunk(
                                 .fold(0.0, f64::max);
                             name * figure.extent + (figure.far[kid] - figure.position[legs]).dot(up)
                         };
-                        key(a).total_cmp(&key(b)).then(b.cmp(&a))
+                        let size = figure.extent.max(f64::MIN_POSITIVE);
+                        rank(key(a) / size).cmp(&rank(key(b) / size)).then(b.cmp(&a))
                     });
                 let Some(next) = next else { break };
                 let ends =
@@ -384,7 +385,7 @@ fn neck(
                 continue;
             }
             let score = 2.0 * said + 0.5 * named.max(-0.2) + rise - 0.3 * steps as f64;
-            if best.is_none_or(|(most, _)| score > most) {
+            if best.is_none_or(|(most, _)| score > most + ROUNDING) {
                 best = Some((score, kid));
             }
         }

@@ -10,8 +10,16 @@ use crate::rotor::Rotor;
 /// Joints beyond which nothing is looked for: no figure has as many.
 pub(super) const MOST_JOINTS: usize = 4096;
 
+/// Lengths that differ by less than this share are equal: mirrored limbs, seen from any side, must not be told apart by rounding.
+pub(super) const ROUNDING: f64 = 1e-9;
+
 /// The cosine of the angle (0.03°) within which axes count as the scene's own: files round.
 const SQUARE: f64 = 0.999_999_86;
+
+/// A score as a number that is the same for scores that differ by rounding only.
+pub(super) fn rank(score: f64) -> i64 {
+    (score / ROUNDING).round() as i64
+}
 
 /// The listed joints as a tree of their own; what the names call helpers and ends does not take part, but its places
 /// count as tips.
@@ -102,7 +110,9 @@ impl<'a> Figure<'a> {
             }
             for &kid in &kids[joint] {
                 let length = reach[kid] + position[kid].distance(position[joint]);
-                if length >= reach[joint] && !names[kid].is_strand() {
+                if !names[kid].is_strand()
+                    && (length > reach[joint] * (1.0 + ROUNDING) || reach[joint] == 0.0)
+                {
                     (reach[joint], far[joint]) = (length, far[kid]);
                 }
                 size[joint] += size[kid];
@@ -175,7 +185,7 @@ impl<'a> Figure<'a> {
         };
         self.kids[joint].iter().copied().reduce(|best, kid| {
             let (a, b) = (key(best), key(kid));
-            if b.0 > a.0 || (b.0 == a.0 && b.1 > a.1) { kid } else { best }
+            if b.0 > a.0 || (b.0 == a.0 && b.1 > a.1 * (1.0 + ROUNDING)) { kid } else { best }
         })
     }
 

@@ -6,7 +6,7 @@ use glam::DVec3;
 
 use super::super::{JointKind, Skeleton, Transform};
 use super::body::{self, Plan};
-use super::figure::{Figure, MOST_JOINTS};
+use super::figure::{Figure, MOST_JOINTS, rank};
 use super::found::{Body, Chain, ChainKind, Doubt, JointRole, LEAST_CONFIDENCE, Roles, TwistHelper};
 use super::role::Role;
 use super::shape::RestShape;
@@ -32,7 +32,7 @@ pub(super) fn find(skeleton: &Skeleton, rest: &[Transform], root: Option<usize>)
         roots.iter().take(8).map(|&root| (root, body::plan(&figure, root))).collect();
     plans.sort_by(|(a, one), (b, other)| {
         let key = |root: usize, plan: &Plan| plan.score + if figure.size[root] > 3 { 1.0 } else { 0.0 };
-        key(*b, other).total_cmp(&key(*a, one)).then(a.cmp(b))
+        rank(key(*b, other)).cmp(&rank(key(*a, one))).then(a.cmp(b))
     });
     let others: Vec<usize> = plans
         .iter()

@@ -3,7 +3,7 @@
 
 use glam::DVec3;
 
-use super::figure::Figure;
+use super::figure::{Figure, rank};
 use super::name::Part;
 
 /// Joints of a chain that are looked at; further ones belong to fingers.
@@ -69,7 +69,8 @@ fn read_both(
                 (places, score, form)
             })
             .collect();
-        scored.sort_by(|a, b| b.1.total_cmp(&a.1));
+        // Equal but for rounding: the first of them counts, however the figure is turned.
+        scored.sort_by_key(|(_, score, _)| std::cmp::Reverse(rank(*score)));
         let Some(&(places, score, form)) = scored.first() else {
             return Reading { places: [None; 4], score: 0.0, shape: 0.0, margins: [0.0; 4] };
         };

@@ -4,7 +4,7 @@ use std::collections::HashMap;
 
 use glam::DVec3;
 
-use super::figure::Figure;
+use super::figure::{Figure, ROUNDING};
 use super::role::Side;
 
 /// Two subtrees that mirror each other, on one centre joint.
@@ -118,7 +118,10 @@ fn vote(figure: &Figure<'_>, loose: &[Vec<usize>]) -> DVec3 {
     }
     // The one that agrees best with all, signs aside.
     let score = |d: &DVec3| apart.iter().map(|other| other.dot(d.normalize()).abs()).sum::<f64>();
-    let best = apart.iter().copied().reduce(|best, d| if score(&d) > score(&best) { d } else { best });
+    let best = apart
+        .iter()
+        .copied()
+        .reduce(|best, d| if score(&d) > score(&best) * (1.0 + ROUNDING) { d } else { best });
     let Some(best) = best else { return DVec3::X };
     let sum = apart.iter().fold(DVec3::ZERO, |sum, d| {
         let signed = if d.dot(best) < 0.0 { -*d } else { *d };
@@ -141,7 +144,7 @@ fn best_match(figure: &Figure<'_>, on: usize, free: &[usize], across: DVec3) -> 
             }
             let error = mirrored(figure.far[a]).distance(figure.far[b])
                 + mirrored(figure.position[a]).distance(figure.position[b]);
-            if error <= 0.4 * size && best.is_none_or(|(least, _, _)| error < least) {
+            if error <= 0.4 * size && best.is_none_or(|(least, _, _)| error < least - ROUNDING * size) {
                 best = Some((error, a, b));
             }
         }
