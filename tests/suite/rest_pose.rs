@@ -71,6 +71,15 @@ fn figure(skins: &[(&[usize], &[DAffine3])]) -> Value {
     })
 }
 
+/// A figure whose three rest poses all differ: hip and knee stand bent, are bound straight, and the clip begins with the hip's
+/// first key. `hip_node` is how its node stands.
+#[cfg(feature = "gui-tests")]
+pub(crate) fn bent_figure(hip_node: [f64; 4]) -> Vec<u8> {
+    let mut document = figure(&[(&[3, 1], &[bound(DQuat::IDENTITY, KNEE), bound(DQuat::IDENTITY, HIP)])]);
+    document["nodes"][1]["rotation"] = json!(hip_node);
+    document.to_string().into_bytes()
+}
+
 #[track_caller]
 fn opened(document: &Value, rest: Option<RestChoice>) -> Source {
     let options = OpenOptions { rest, ..OpenOptions::default() };
