@@ -14,7 +14,7 @@ use super::super::window::Window;
 use super::answers::Answer;
 use crate::demo;
 use crate::exchange::csv::{self, CsvErrorKind, CsvOptions, NamedColumns, TimeUnit};
-use crate::exchange::{self, ClipAddress, Guard, OpenError, OpenOptions, Source, disk, ron};
+use crate::exchange::{self, ClipAddress, OpenError, OpenOptions, Source, disk, ron};
 use crate::scene::{Document, Edit, Library, Loaded, SourceRef};
 
 /// A scene as read, with its files as far as they were found.
