@@ -88,7 +88,7 @@ fn find<'a>(clip: &Clip, joint: usize, limits: &dyn Fn() -> Option<&'a Limits>) 
     let secs: Vec<f64> = scan.track.times.iter().collect();
     let limits = limits();
     let above = runs_above(&scan, &jumps, limits);
-    let sides = Sides::new(scan, &jumps, limits);
+    let sides = Sides::new(scan, &jumps, limits, !above.is_empty());
     let motion = Motion { scan, poses, secs, jumps, above, sides };
     let runs = motion.runs();
     let lone = motion.lone_jumps(&runs);
@@ -110,7 +110,7 @@ fn runs_above(scan: &Scan<'_>, own: &[usize], limits: Option<&Limits>) -> Vec<Ru
         if shared * 2 > own.len() {
             let poses = poses(&other);
             let secs = other.track.times.iter().collect();
-            let sides = Sides::new(other, &jumps, limits);
+            let sides = Sides::new(other, &jumps, limits, false);
             return Motion { scan: other, poses, secs, jumps, above: Vec::new(), sides }.runs();
         }
     }

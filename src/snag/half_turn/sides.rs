@@ -97,13 +97,14 @@ pub(super) struct Sides<'a> {
 }
 
 impl<'a> Sides<'a> {
-    pub(super) fn new(scan: Scan<'a>, own_jumps: &[usize], limits: Option<&Limits>) -> Self {
+    /// Where a joint above jumps along, directions from the body tell of that one and are not asked.
+    pub(super) fn new(scan: Scan<'a>, own_jumps: &[usize], limits: Option<&Limits>, is_led: bool) -> Self {
         let limit = limits.and_then(|limits| limits.get(scan.joint)).copied();
         Self {
             scan,
             limit: limit.filter(|limit| limit.confidence >= LEAST_CONFIDENCE),
             other_side: other_side(&scan),
-            directions: Directions::new(&scan, own_jumps),
+            directions: if is_led { None } else { Directions::new(&scan, own_jumps) },
         }
     }
 
