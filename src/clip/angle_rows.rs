@@ -1,10 +1,10 @@
 //! A file's angles to turns, many rows at a time.
 
-use std::sync::Arc;
-
 use crate::rotor::batch::{self, Level, Streams};
 use crate::rotor::{Axis, EulerOrder, Rotor};
 
+use super::degrees::{Degrees, GrowingDegrees, give_back};
+use super::keys::Keys;
 use super::path::{PathKind, Paths, Segments};
 use super::rotation_track::{FileAngles, RotationTrack, Stored};
 use super::times::Times;
@@ -16,13 +16,19 @@ const TILE: usize = 64;
 #[derive(Debug)]
 pub struct AngleScratch {
     level: Level,
+    degrees: Vec<[f64; 3]>,
     radians: Streams<f64, 3>,
     rotors: Streams<f64, 4>,
 }
 
 impl Default for AngleScratch {
     fn default() -> Self {
-        Self { level: Level::best(), radians: Streams::zeros(TILE), rotors: Streams::zeros(TILE) }
+        Self {
+            level: Level::best(),
+            degrees: Vec::with_capacity(TILE),
+            radians: Streams::zeros(TILE),
+            rotors: Streams::zeros(TILE),
+        }
     }
 }
 
@@ -32,119 +38,136 @@ impl Default for AngleScratch {
 #[derive(Clone, Debug)]
 pub struct AngleRows {
     axes: Vec<Axis>,
-    order: EulerOrder,
-    degrees: Growing<[f64; 3]>,
-    keys: Vec<Rotor>,
-    /// The last finite rotor as it was made, and the sign it took to be near the one before it.
-    before: (Rotor, f64),
+    degrees: GrowingDegrees,
+    rotors: RotorRows,
 }
 
 impl AngleRows {
     /// None yet; room for `capacity` rows. See [`FileAngles`] for `axes` and `order`.
     pub fn new(axes: Vec<Axis>, order: EulerOrder, capacity: usize) -> Self {
-        Self {
-            axes,
-            order,
-            degrees: Growing::new([0.0; 3], capacity),
-            keys: Vec::with_capacity(capacity),
-            before: (Rotor::IDENTITY, 1.0),
-        }
+        let degrees = GrowingDegrees::new(axes.len(), capacity);
+        let mut rows = Self { axes, degrees, rotors: RotorRows::new(order) };
+        rows.reserve(capacity);
+        rows
     }
 
     /// Makes room for `capacity` rows in all.
     pub fn reserve(&mut self, capacity: usize) {
         self.degrees.reserve(capacity);
-        self.keys.reserve_exact(capacity.saturating_sub(self.keys.len()));
+        if self.makes_rotors() {
+            self.rotors.reserve(capacity);
+        }
     }
 
-    /// Adds `count` rows: `row` gives the angles in degrees of each, in the order of the axes.
+    /// Whether rotors are made at once. Those of a joint with one or two angles are so much larger than its numbers that they wait until
+    /// they are asked for.
+    fn makes_rotors(&self) -> bool {
+        self.axes.len() > 2
+    }
+
+    /// Whether all numbers so far are held as whole ones.
+    pub fn holds_whole(&self) -> bool {
+        self.degrees.holds_whole()
+    }
+
+    /// Bytes that a row takes once rows are added that are, or are not, all whole numbers.
+    pub fn row_bytes(&self, are_whole: bool) -> usize {
+        let rotor = if self.makes_rotors() { size_of::<Rotor>() } else { 0 };
+        rotor + self.degrees.row_bytes(are_whole)
+    }
+
+    /// Adds `count` rows: `row` gives the angles in degrees of each, in the order of the axes; beyond these they are 0.
     pub fn push(&mut self, count: usize, row: impl Fn(usize) -> [f64; 3], scratch: &mut AngleScratch) {
         for start in (0..count).step_by(TILE) {
             let length = TILE.min(count - start);
-            let degrees = self.degrees.next(length);
-            let [first, second, third] = scratch.radians.parts_mut().map(|stream| &mut stream[..length]);
-            for (index, own) in degrees.iter_mut().enumerate() {
-                let angles = row(start + index);
-                *own = angles;
-                first[index] = angles[0].to_radians();
-                second[index] = angles[1].to_radians();
-                third[index] = angles[2].to_radians();
+            let mut tile = std::mem::take(&mut scratch.degrees);
+            tile.clear();
+            tile.extend((start..start + length).map(&row));
+            self.degrees.extend(&tile);
+            if self.makes_rotors() {
+                self.rotors.push(&tile, scratch);
             }
-            let radians = scratch.radians.parts().map(|stream| &stream[..length]);
-            let rotors = scratch.rotors.parts_mut().map(|stream| &mut stream[..length]);
-            batch::euler_rotors(scratch.level, self.order, radians, rotors);
-            let [s, yz, zx, xy] = scratch.rotors.parts().map(|stream| &stream[..length]);
-            let (mut reference, mut sign) = self.before;
-            self.keys.extend((0..length).map(|index| {
-                let rotor = Rotor::new(s[index], yz[index], zx[index], xy[index]);
-                // Rotors made of angles have no sign of their own: each takes the one near the last finite one before it.
-                let own_sign = if sign * rotor.dot(reference) < 0.0 { -1.0 } else { 1.0 };
-                if rotor.is_finite() {
-                    (reference, sign) = (rotor, own_sign);
-                }
-                rotor.scale(own_sign)
-            }));
-            self.before = (reference, sign);
+            scratch.degrees = tile;
         }
     }
 
     /// The track, with slerp between; `times` has as many keys as there are rows.
-    pub fn finish(mut self, times: Times) -> RotationTrack {
-        if self.keys.capacity() - self.keys.len() > self.keys.len() / 8 {
-            self.keys.shrink_to_fit();
-        }
+    pub fn finish(self, times: Times) -> RotationTrack {
+        let makes_rotors = self.makes_rotors();
         let degrees = self.degrees.finish();
+        let order = self.rotors.order;
+        let keys =
+            if makes_rotors { self.rotors.finish().into() } else { Keys::of_angles(order, degrees.clone()) };
         RotationTrack {
             times,
-            keys: self.keys.into(),
+            keys,
             paths: Paths::Every(PathKind::Slerp),
             tangents: None,
             segments: Segments::default(),
-            stored: Stored::Angles(FileAngles { axes: self.axes, order: self.order, degrees }),
+            stored: Stored::Angles(FileAngles { axes: self.axes, order, degrees }),
         }
     }
 }
 
-/// A shared slice that is written where it will stay: a list that is copied into one at the end would for a time be there
-/// twice.
+/// The rotors of a file's angles, each with the sign that is near the last finite one before it.
+pub(super) fn rotors(order: EulerOrder, degrees: &Degrees) -> Vec<Rotor> {
+    let (mut rows, mut scratch) = (RotorRows::new(order), AngleScratch::default());
+    rows.reserve(degrees.len());
+    let mut tile = Vec::with_capacity(TILE);
+    for start in (0..degrees.len()).step_by(TILE) {
+        tile.clear();
+        tile.extend((start..degrees.len().min(start + TILE)).map(|key| degrees.triple(key)));
+        rows.push(&tile, &mut scratch);
+    }
+    rows.finish()
+}
+
 #[derive(Clone, Debug)]
-pub struct Growing<T> {
-    items: Arc<[T]>,
-    len: usize,
-    fill: T,
+struct RotorRows {
+    order: EulerOrder,
+    keys: Vec<Rotor>,
+    /// The last finite rotor as it was made, and the sign it took to be near the one before it.
+    before: (Rotor, f64),
 }
 
-impl<T: Copy> Growing<T> {
-    /// Nothing yet, with room for `capacity` items. `fill` may be any item; it stands in what is not used yet.
-    pub fn new(fill: T, capacity: usize) -> Self {
-        Self { items: std::iter::repeat_n(fill, capacity).collect(), len: 0, fill }
+impl RotorRows {
+    fn new(order: EulerOrder) -> Self {
+        Self { order, keys: Vec::new(), before: (Rotor::IDENTITY, 1.0) }
     }
 
-    /// Makes room for `capacity` items in all.
-    pub fn reserve(&mut self, capacity: usize) {
-        if capacity > self.items.len() {
-            let rest = std::iter::repeat_n(self.fill, capacity - self.len);
-            self.items = self.items[..self.len].iter().copied().chain(rest).collect();
-        }
+    fn reserve(&mut self, capacity: usize) {
+        self.keys.reserve_exact(capacity.saturating_sub(self.keys.len()));
     }
 
-    /// The next `count` items, to be written.
-    pub fn next(&mut self, count: usize) -> &mut [T] {
-        let (start, end) = (self.len, self.len + count);
-        if end > self.items.len() {
-            self.reserve(end.max(self.items.len() + self.items.len() / 2));
+    /// Adds at most [`TILE`] rows.
+    fn push(&mut self, degrees: &[[f64; 3]], scratch: &mut AngleScratch) {
+        let length = degrees.len();
+        let [first, second, third] = scratch.radians.parts_mut().map(|stream| &mut stream[..length]);
+        for (index, angles) in degrees.iter().enumerate() {
+            first[index] = angles[0].to_radians();
+            second[index] = angles[1].to_radians();
+            third[index] = angles[2].to_radians();
         }
-        self.len = end;
-        // Nobody else has it before it is finished; a copy of this list, if there is one, keeps its own.
-        if Arc::get_mut(&mut self.items).is_none() {
-            self.items = self.items.iter().copied().collect();
-        }
-        Arc::get_mut(&mut self.items).map_or(&mut [], |items| &mut items[start..end])
+        let radians = scratch.radians.parts().map(|stream| &stream[..length]);
+        let rotors = scratch.rotors.parts_mut().map(|stream| &mut stream[..length]);
+        batch::euler_rotors(scratch.level, self.order, radians, rotors);
+        let [s, yz, zx, xy] = scratch.rotors.parts().map(|stream| &stream[..length]);
+        let (mut reference, mut sign) = self.before;
+        self.keys.extend((0..length).map(|index| {
+            let rotor = Rotor::new(s[index], yz[index], zx[index], xy[index]);
+            // Rotors made of angles have no sign of their own: each takes the one near the last finite one before it.
+            let own_sign = if sign * rotor.dot(reference) < 0.0 { -1.0 } else { 1.0 };
+            if rotor.is_finite() {
+                (reference, sign) = (rotor, own_sign);
+            }
+            rotor.scale(own_sign)
+        }));
+        self.before = (reference, sign);
     }
 
-    /// All items.
-    pub fn finish(self) -> Arc<[T]> {
-        if self.len == self.items.len() { self.items } else { self.items[..self.len].into() }
+    fn finish(mut self) -> Vec<Rotor> {
+        give_back(&mut self.keys);
+        self.keys
     }
 }
 

@@ -4,8 +4,11 @@ use std::fmt;
 use std::ops::Deref;
 use std::sync::{Arc, OnceLock};
 
-use crate::rotor::Rotor;
 use crate::rotor::batch::Streams;
+use crate::rotor::{EulerOrder, Rotor};
+
+use super::angle_rows::rotors;
+use super::degrees::Degrees;
 
 /// The rotors of a track's keys as stored; to be read like a slice, shared when cloned.
 ///
@@ -15,11 +18,30 @@ use crate::rotor::batch::Streams;
 pub struct Keys(Arc<Inner>);
 
 struct Inner {
-    stored: Vec<Rotor>,
+    stored: OnceLock<Vec<Rotor>>,
+    /// What they are made of when they are first asked for.
+    angles: Option<(EulerOrder, Degrees)>,
     sound: OnceLock<Streams<f64, 4>>,
 }
 
 impl Keys {
+    /// The rotors of a file's angles, to be made when they are first asked for.
+    pub(super) fn of_angles(order: EulerOrder, degrees: Degrees) -> Self {
+        let angles = Some((order, degrees));
+        Self(Arc::new(Inner { stored: OnceLock::new(), angles, sound: OnceLock::new() }))
+    }
+
+    /// How many. They need not be made for it.
+    pub fn len(&self) -> usize {
+        let angles = || self.0.angles.as_ref().map_or(0, |(_, degrees)| degrees.len());
+        self.0.stored.get().map_or_else(angles, Vec::len)
+    }
+
+    /// Whether there are none.
+    pub fn is_empty(&self) -> bool {
+        self.len() == 0
+    }
+
     /// [`super::RotationTrack::sound_key`] of every key, in streams: unit, and what is not finite is its nearest sound
     /// neighbour before, else behind. It takes as much memory as the keys themselves.
     pub fn sound(&self) -> &Streams<f64, 4> {
@@ -43,14 +65,16 @@ impl Deref for Keys {
     type Target = [Rotor];
 
     fn deref(&self) -> &[Rotor] {
-        &self.0.stored
+        self.0.stored.get_or_init(|| {
+            self.0.angles.as_ref().map_or(Vec::new(), |(order, degrees)| rotors(*order, degrees))
+        })
     }
 }
 
 /// The list stays where it is.
 impl From<Vec<Rotor>> for Keys {
     fn from(stored: Vec<Rotor>) -> Self {
-        Self(Arc::new(Inner { stored, sound: OnceLock::new() }))
+        Self(Arc::new(Inner { stored: stored.into(), angles: None, sound: OnceLock::new() }))
     }
 }
 

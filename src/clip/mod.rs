@@ -9,6 +9,7 @@ mod bulk;
 mod contact;
 mod continuity;
 mod copied_keys;
+mod degrees;
 mod displace;
 mod feet;
 mod key_edit;
@@ -28,7 +29,7 @@ mod times;
 mod vector_track;
 mod worlds;
 
-pub use angle_rows::{AngleRows, AngleScratch, Growing};
+pub use angle_rows::{AngleRows, AngleScratch};
 pub use branch::Branch;
 pub use bulk::turns_between;
 pub use contact::{
@@ -37,6 +38,7 @@ pub use contact::{
 };
 pub use continuity::{continuous_angles, continuous_angles_to};
 pub use copied_keys::CopiedKeys;
+pub use degrees::{Degrees, Growing, is_whole};
 pub use displace::{Push, PushFrame, pushed};
 pub use feet::standing_feet;
 pub use key_edit::{KeyChange, KeyEdit, NewKey, with_key_edits};

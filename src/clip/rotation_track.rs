@@ -4,8 +4,9 @@ use std::sync::Arc;
 
 use crate::rotor::{Axis, Bivector, EulerOrder, Rotor};
 
-use super::angle_rows::{AngleRows, AngleScratch};
+use super::angle_rows::rotors;
 use super::continuity::refit;
+use super::degrees::Degrees;
 use super::keys::Keys;
 use super::path::{PathKind, Paths, Segments};
 use super::times::Times;
@@ -18,7 +19,7 @@ pub struct FileAngles {
     /// The order they belong to, filled up where the file has fewer than three.
     pub order: EulerOrder,
     /// Degrees as the file has them, a triple for each key in the axes' order; what the file lacks is 0.
-    pub degrees: Arc<[[f64; 3]]>,
+    pub degrees: Degrees,
 }
 
 impl FileAngles {
@@ -74,10 +75,8 @@ impl RotationTrack {
     /// A track of a file's angles, a triple in degrees for each key, with slerp between.
     /// Angles that are not finite give rotors that are not.
     pub fn from_angles(times: Times, angles: FileAngles) -> Self {
-        let FileAngles { axes, order, degrees } = angles;
-        let mut rows = AngleRows::new(axes, order, degrees.len());
-        rows.push(degrees.len(), |row| degrees[row], &mut AngleScratch::default());
-        rows.finish(times)
+        let keys = rotors(angles.order, &angles.degrees);
+        Self { stored: Stored::Angles(angles), ..Self::from_rotors(times, keys) }
     }
 
     /// A track of plane angles in degrees, a triple yz, zx, xy for each key, with slerp between.

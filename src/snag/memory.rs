@@ -1,8 +1,6 @@
 //! What the finders of stored angles have in common, worked out once for a joint.
 
-use std::sync::Arc;
-
-use crate::clip::FileAngles;
+use crate::clip::{Degrees, FileAngles};
 
 use super::angle_steps::{SortedSteps, sorted_steps};
 use super::branches::{Branches, follow};
@@ -15,7 +13,7 @@ pub struct Memory(Option<Known>);
 
 #[derive(Debug)]
 struct Known {
-    degrees: Arc<[[f64; 3]]>,
+    degrees: Degrees,
     branches: Branches,
     steps: SortedSteps,
 }
@@ -30,7 +28,7 @@ impl Memory {
     }
 
     fn known(&mut self, scan: &Scan<'_>, angles: &FileAngles) -> &Known {
-        if self.0.as_ref().is_some_and(|known| !Arc::ptr_eq(&known.degrees, &angles.degrees)) {
+        if self.0.as_ref().is_some_and(|known| !known.degrees.is_same(&angles.degrees)) {
             self.0 = None;
         }
         self.0.get_or_insert_with(|| {

@@ -470,6 +470,100 @@ fn large_files_take_no_more_memory_than_eight_times_their_size_and_64_mb() {
     }
 }
 
+/// A whole motion file of 60 MB whose numbers are as short as numbers can be: what its joints' channels are, the numbers of a row in
+/// turn, and whether it is read. Where it is, it is also played unless that is known to take more.
+const SHORT_NUMBERS: [(&str, &[&str], &str, bool, bool); 6] = [
+    ("three turns a joint", &["Zrotation", "Xrotation", "Yrotation"], "0 1 2 3 4 5 6 7 8 9 -1 ", true, true),
+    (
+        "six channels a joint",
+        &["Xposition", "Yposition", "Zposition", "Zrotation", "Xrotation", "Yrotation"],
+        "0 9 0 7 5 ",
+        true,
+        true,
+    ),
+    ("two turns a joint", &["Zrotation", "Xrotation"], "0 1 2 3 4 ", true, false),
+    ("one turn a joint", &["Yrotation"], "0 1 2 3 4 .5 ", true, false),
+    (
+        "all but one number whole",
+        &["Zrotation", "Xrotation", "Yrotation"],
+        "0 1 2 3 4 5 6 7 8 9 .5 ",
+        false,
+        false,
+    ),
+    ("one place a joint", &["Zposition"], "0 1 2 3 4 ", false, false),
+];
+
+/// Such a file.
+fn short_numbers(channels: &[&str], numbers: &str) -> Vec<u8> {
+    const SIZE: usize = 60 << 20;
+    let n_joints = 61;
+    let mut text = "HIERARCHY\n".to_owned();
+    for joint in 0..n_joints {
+        let kind = if joint == 0 { "ROOT" } else { "JOINT" };
+        let (count, names) = (channels.len(), channels.join(" "));
+        text.extend([kind, &format!(" j{joint} {{ OFFSET 0 1 0 CHANNELS {count} {names}\n")]);
+    }
+    text.push_str(&"}".repeat(n_joints));
+    text.push_str("\nMOTION\nFrame Time: 0.01\n");
+    let columns = n_joints * channels.len();
+    let mut numbers = numbers.split_inclusive(' ').cycle();
+    while text.len() < SIZE {
+        text.extend(numbers.by_ref().take(columns));
+        text.push('\n');
+    }
+    text.into_bytes()
+}
+
+/// Opens such a file, alone in its process.
+#[expect(clippy::print_stdout, reason = "the parent process reads it")]
+fn open_short_numbers(number: usize) {
+    let (name, channels, numbers, is_read, is_played) = SHORT_NUMBERS[number];
+    let bytes = short_numbers(channels, numbers);
+    let size = bytes.len() as u64;
+    let reset = std::fs::OpenOptions::new().write(true).open("/proc/self/clear_refs");
+    let is_reset = reset.and_then(|mut file| file.write_all(b"5")).is_ok();
+    // The text itself is in memory by now, and counts.
+    let start_bytes = peak_bytes().filter(|_| is_reset).map(|peak| peak - size);
+    let opened = open_bytes(Path::new("short.bvh"), bytes, &OpenOptions::default());
+    match &opened {
+        Ok(source) => {
+            assert!(is_read, "{name} is read");
+            if is_played {
+                let _ = source.clips[0].world_at(0.123);
+            }
+        }
+        Err(error) => {
+            let text = error.to_string();
+            assert!(!is_read && text.contains("; cut the file into shorter ones"), "{name}: {text}");
+        }
+    }
+    let used = peak_bytes().zip(start_bytes).map_or(0, |(peak, start)| peak - start);
+    println!("{name} is read: {is_read}, {:.2} times its size", used as f64 / size as f64);
+    assert!(used <= 8 * size + SPARE_BYTES, "{name} took {} MB of {}", used >> 20, size >> 20);
+}
+
+#[test]
+fn motion_of_numbers_of_one_digit_takes_no_more_than_eight_times_its_size_and_64_mb() {
+    if let Ok(task) = std::env::var(TASK) {
+        return open_short_numbers(task.parse().expect("a number"));
+    }
+    for (number, (name, ..)) in SHORT_NUMBERS.iter().enumerate() {
+        let output = Command::new(std::env::current_exe().expect("this program"))
+            .args([
+                "--exact",
+                "hostile::motion_of_numbers_of_one_digit_takes_no_more_than_eight_times_its_size_and_64_mb",
+            ])
+            .args(["--nocapture"])
+            .env("RUST_BACKTRACE", "0")
+            .env(TASK, number.to_string())
+            .output()
+            .expect("this program starts again");
+        let text = String::from_utf8_lossy(&output.stdout);
+        println!("{}", text.lines().find(|line| line.contains(" is read: ")).unwrap_or("nothing was told"));
+        assert!(output.status.success(), "{name}: {text}\n{}", String::from_utf8_lossy(&output.stderr));
+    }
+}
+
 #[test]
 fn a_hundred_thousand_damaged_files_do_no_harm() {
     if let Ok(task) = std::env::var(TASK) {

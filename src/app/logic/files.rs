@@ -13,7 +13,7 @@ use super::super::view_models::{Changes, changes, counted};
 use super::super::window::Window;
 use super::answers::Answer;
 use crate::demo;
-use crate::exchange::csv::{CsvErrorKind, CsvOptions, NamedColumns, TimeUnit};
+use crate::exchange::csv::{self, CsvErrorKind, CsvOptions, NamedColumns, TimeUnit};
 use crate::exchange::{self, ClipAddress, Guard, OpenError, OpenOptions, Source, disk, ron};
 use crate::scene::{Document, Edit, Library, Loaded, SourceRef};
 
@@ -344,9 +344,7 @@ fn unknown_header(error: &OpenError) -> Option<(PathBuf, Vec<String>)> {
     if !expected.contains("--columns") {
         return None;
     }
-    let text = String::from_utf8_lossy(&disk::read(path).ok()?).into_owned();
-    let header = text.lines().nth((source.line as usize).checked_sub(1)?)?;
-    let names = header.split(',').map(|name| name.trim().trim_matches('"').to_owned()).collect();
+    let names = csv::header(&disk::read(path).ok()?).ok()?;
     Some((path.clone(), names))
 }
 

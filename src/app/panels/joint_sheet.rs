@@ -185,13 +185,17 @@ fn rest_choice(ui: &mut Ui, scope: &mut Scope<'_>) {
         return;
     };
     let mut chosen = source.rest;
-    let combo = ComboBox::from_id_salt("rest pose").selected_text(chosen.title()).truncate();
+    let shown = source.rest.title();
+    let combo = ComboBox::from_id_salt("rest pose").selected_text(shown).truncate();
     let response = combo.show_ui(ui, |ui| {
         for &rest in &source.rests {
             ui.selectable_value(&mut chosen, rest, rest.title());
         }
     });
-    response.response.widget_info(|| WidgetInfo::labeled(Role::ComboBox, true, "Rest pose"));
+    response.response.widget_info(|| WidgetInfo {
+        current_text_value: Some(shown.to_owned()),
+        ..WidgetInfo::labeled(Role::ComboBox, true, "Rest pose")
+    });
     if chosen != source.rest {
         scope.out.push(Command::ChooseRest(chosen));
     }

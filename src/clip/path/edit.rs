@@ -354,11 +354,11 @@ impl Stored {
 
     /// Of some keys alone.
     pub(in super::super) fn only(&self, keys: &[usize]) -> Self {
-        let only = |degrees: &Arc<[[f64; 3]]>| keys.iter().map(|&key| degrees[key]).collect();
+        let only = |degrees: &[[f64; 3]]| keys.iter().map(|&key| degrees[key]).collect::<Arc<[_]>>();
         match self {
             Self::Rotors => Self::Rotors,
             Self::Angles(angles) => {
-                Self::Angles(FileAngles { degrees: only(&angles.degrees), ..angles.clone() })
+                Self::Angles(FileAngles { degrees: only(&angles.degrees).into(), ..angles.clone() })
             }
             Self::PlaneAngles(degrees) => Self::PlaneAngles(only(degrees)),
         }

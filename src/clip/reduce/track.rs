@@ -117,12 +117,13 @@ impl RotationTrack {
         let paths = if kinds.is_empty() { Paths::Every(path) } else { Paths::from_kinds(&kinds) };
         // A key between two of the file's has no triple of its own.
         let all_own: Option<Vec<usize>> = own.into_iter().collect();
-        let chosen =
-            |all: &Arc<[[f64; 3]]>| all_own.as_ref().map(|own| own.iter().map(|&key| all[key]).collect());
+        let chosen = |all: &[[f64; 3]]| {
+            all_own.as_ref().map(|own| own.iter().map(|&key| all[key]).collect::<Arc<[_]>>())
+        };
         let stored = match &self.stored {
             Stored::Rotors => None,
             Stored::Angles(angles) => chosen(&angles.degrees)
-                .map(|degrees| Stored::Angles(FileAngles { degrees, ..angles.clone() })),
+                .map(|degrees| Stored::Angles(FileAngles { degrees: degrees.into(), ..angles.clone() })),
             Stored::PlaneAngles(degrees) => chosen(degrees).map(Stored::PlaneAngles),
         };
         Self {

@@ -43,6 +43,14 @@ pub enum BvhErrorKind {
     /// A comma could be a decimal mark here or a separator there.
     #[error("expected one decimal mark in the whole file, found points and the comma of `{0}`")]
     TwoDecimalMarks(String),
+    /// The tracks would take far more memory than the text.
+    #[error(
+        "expected motion that takes at most {most_mb} MB in a file of this size, found more; cut the file into shorter ones"
+    )]
+    TooManyNumbers {
+        /// The most that is made of such a file.
+        most_mb: usize,
+    },
     /// Places in the text no longer fit their numbers.
     #[error("expected a file below 4 GiB, found {0} bytes")]
     TooLarge(usize),

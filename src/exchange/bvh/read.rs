@@ -102,7 +102,7 @@ pub fn read<'b>(
         frames: 0,
         decimal_comma: false,
     };
-    let mut rows = Rows::new(&joints);
+    let mut rows = Rows::new(&joints, bytes.len());
     if let Some(head) = &head {
         read_rows(&mut scanner, &document, &joints, head, &mut rows, &mut notes)?;
     } else {
@@ -137,11 +137,15 @@ fn read_rows(
         let likely = ((rows.len() / columns.max(1)) as f64 * (whole / read)).ceil() as usize;
         if announced.abs_diff(likely) <= likely / 8 { announced } else { likely }
     };
+    let too_many = |scanner: &Scanner<'_>, most_bytes: usize| {
+        scanner.error(document.rows_start, BvhErrorKind::TooManyNumbers { most_mb: most_bytes >> 20 })
+    };
     loop {
         if columns > 0 {
             scanner.plain_numbers(rows.tile_len, &mut rows.tile);
             if rows.tile.len() >= rows.tile_len {
-                rows.hand_out(expected(rows, scanner.pos()));
+                let expected = expected(rows, scanner.pos());
+                rows.hand_out(expected).map_err(|most| too_many(scanner, most))?;
                 continue;
             }
         }
@@ -175,7 +179,7 @@ fn read_rows(
         }
     }
     let complete = rows.len().checked_div(columns).unwrap_or(0);
-    rows.hand_out(complete);
+    rows.hand_out(complete).map_err(|most| too_many(scanner, most))?;
     let left_over = rows.tile.len();
     if left_over > 0 {
         uneven_line(document, joints, scanner.pos())?;

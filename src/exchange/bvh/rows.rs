@@ -5,7 +5,9 @@ use std::sync::Arc;
 
 use glam::DVec3;
 
-use crate::clip::{AngleRows, AngleScratch, Growing, JointTracks, RotationTrack, Times, VectorTrack};
+use crate::clip::{
+    AngleRows, AngleScratch, Growing, JointTracks, RotationTrack, Times, VectorTrack, is_whole,
+};
 use crate::exchange::turns::Turns;
 use crate::rotor::Rotor;
 
@@ -16,6 +18,11 @@ use super::syntax::{Channel, JointSyntax};
 const TILE_NUMBERS: usize = 16_384;
 /// Rows are turned in blocks of so many.
 const BLOCK: usize = 64;
+
+/// What tracks may take beside the text: with it no file takes more than 8 times its size and 64 MB. Only a long file that is
+/// nearly all places along one axis, of a digit or two each, asks for more.
+const MOST_TIMES: usize = 7;
+const SPARE_BYTES: usize = 48 << 20;
 
 /// Turns of at most this many degrees look like radians.
 const MOST_RADIANS: f64 = 7.0;
@@ -32,6 +39,8 @@ pub(super) struct Rows {
     done: usize,
     /// Rows that they have room for.
     capacity: usize,
+    /// Bytes that the tracks may take.
+    most_bytes: usize,
     /// The largest angle in degrees, or one beyond what radians would be.
     pub(super) largest_deg: f64,
     scratch: AngleScratch,
@@ -67,8 +76,8 @@ struct Place {
 }
 
 impl Rows {
-    /// No rows yet.
-    pub(super) fn new(joints: &[JointSyntax]) -> Self {
+    /// No rows yet, of a file of `file_bytes` bytes.
+    pub(super) fn new(joints: &[JointSyntax], file_bytes: usize) -> Self {
         let mut next = 0;
         let mut joint_rows = Vec::with_capacity(joints.len());
         for joint in joints {
@@ -83,6 +92,7 @@ impl Rows {
             tile_len: (rows - rows % BLOCK) * next,
             done: 0,
             capacity: 0,
+            most_bytes: MOST_TIMES.saturating_mul(file_bytes).saturating_add(SPARE_BYTES),
             largest_deg: 0.0,
             scratch: AngleScratch::default(),
         }
@@ -95,16 +105,25 @@ impl Rows {
 
     /// Hands the complete rows of the tile out to the joints; `expected` is how many rows there will be in all, as far as
     /// can be told.
-    pub(super) fn hand_out(&mut self, expected: usize) {
+    ///
+    /// # Errors
+    /// When the tracks would take more memory than a file of this size may ask for: how many bytes that is.
+    pub(super) fn hand_out(&mut self, expected: usize) -> Result<(), usize> {
         let Some(count) = self.tile.len().checked_div(self.columns).filter(|&count| count > 0) else {
-            return;
+            return Ok(());
         };
         let used = count * self.columns;
         let needed = self.done + count;
+        let rows = &self.tile[..used];
+        let row_bytes: usize = self.joints.iter().map(|joint| joint.row_bytes(rows, self.columns)).sum();
+        if row_bytes.saturating_mul(needed) > self.most_bytes {
+            return Err(self.most_bytes);
+        }
         if needed > self.capacity {
             // Room that grows by a few rows at a time would be copied over and over.
             let more = if self.capacity == 0 { 0 } else { self.capacity + self.capacity / 4 };
-            self.capacity = expected.max(needed).max(more);
+            let most = self.most_bytes.checked_div(row_bytes).unwrap_or(usize::MAX);
+            self.capacity = expected.max(more).min(most).max(needed);
             for joint in &mut self.joints {
                 joint.reserve(self.capacity);
             }
@@ -122,6 +141,7 @@ impl Rows {
         }
         self.tile.drain(..used);
         self.done += count;
+        Ok(())
     }
 
     /// Rows that the joints have.
@@ -160,6 +180,19 @@ impl JointRows {
         let place =
             is_placed.then(|| Place { keys: Growing::new(DVec3::ZERO, 0), columns, offset: joint.offset });
         Self { turn, place }
+    }
+
+    /// Bytes that a row takes once these rows are added.
+    fn row_bytes(&self, tile: &[f64], columns: usize) -> usize {
+        let turn = match &self.turn {
+            Turn::None => 0,
+            Turn::Many { .. } => size_of::<Rotor>(),
+            Turn::Angles { rows, groups } => {
+                let whole_row = |row: &[f64]| groups.iter().flatten().all(|&column| is_whole(row[column]));
+                rows.row_bytes(rows.holds_whole() && tile.chunks_exact(columns).all(whole_row))
+            }
+        };
+        turn + self.place.as_ref().map_or(0, |_| size_of::<DVec3>())
     }
 
     fn reserve(&mut self, capacity: usize) {

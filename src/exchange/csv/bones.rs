@@ -9,7 +9,7 @@ use crate::exchange::decimal::is_measure;
 use crate::rotor::Rotor;
 use crate::skeleton::{Joint, JointKind, Transform};
 
-use super::cells::{Records, number, quoted, shown, text};
+use super::cells::{Dialect, Records, comma_number, number, quoted, shown, text};
 use super::error::{CsvError, CsvErrorKind};
 
 /// Joints of one file that are read.
@@ -41,7 +41,7 @@ pub fn hierarchy(bytes: &[u8]) -> Result<Vec<Bone>, CsvError> {
     const COLUMNS: [&str; 5] = ["joint", "parent", "offset.x", "offset.y", "offset.z"];
     let mut records = Records::new(bytes);
     while records.comment().is_some() {}
-    if !records.next()? {
+    if !records.header()? {
         return Err(CsvError::unexpected(records.line, COLUMNS.join(","), "the end of the file"));
     }
     let header: Vec<String> = records.cells.iter().map(|&cell| text(bytes, cell).to_lowercase()).collect();
@@ -51,6 +51,7 @@ pub fn hierarchy(bytes: &[u8]) -> Result<Vec<Bone>, CsvError> {
             CsvError::unexpected(records.line, format!("a column {name}"), quoted(&header.join(",")))
         })?;
     }
+    let is_comma_separated = records.dialect == Dialect::RFC;
     let mut bones = Vec::new();
     while records.next()? {
         let line = records.line;
@@ -63,7 +64,8 @@ pub fn hierarchy(bytes: &[u8]) -> Result<Vec<Bone>, CsvError> {
         };
         let offset = |column: usize| {
             let cell = cell(column)?;
-            number(bytes, cell).filter(|&value| is_measure(value)).ok_or_else(|| {
+            let comma = || comma_number(bytes, cell).filter(|_| !is_comma_separated);
+            number(bytes, cell).or_else(comma).filter(|&value| is_measure(value)).ok_or_else(|| {
                 CsvError::unexpected(line, "a finite number", shown(bytes, cell)).in_column(COLUMNS[column])
             })
         };

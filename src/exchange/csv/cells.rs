@@ -20,10 +20,55 @@ pub(super) struct Cell {
     pub(super) end: usize,
 }
 
+/// What stands between cells, and in numbers. RFC 4180 has commas and points; where a comma is the decimal mark, tables have
+/// semicolons, and sensors like tabs.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) struct Dialect {
+    /// The byte between two cells.
+    pub(super) separator: u8,
+    /// Whether numbers have a comma where others have a point.
+    pub(super) decimal_comma: bool,
+}
+
+impl Dialect {
+    /// That of the RFC.
+    pub(super) const RFC: Self = Self { separator: b',', decimal_comma: false };
+
+    /// That of a header line: what of comma, semicolon and tab it has most of outside quotes. Of decimal marks it says nothing.
+    fn of_header(line: &[u8]) -> Self {
+        let mut is_quoted = false;
+        let mut counts = [(b',', 0_usize), (b';', 0), (b'\t', 0)];
+        for &byte in line {
+            is_quoted ^= byte == b'"';
+            for (separator, count) in &mut counts {
+                *count = count.saturating_add(usize::from(byte == *separator && !is_quoted));
+            }
+        }
+        // Of equal ones the first.
+        let most = counts.into_iter().rev().max_by_key(|(_, count)| *count);
+        Self { separator: most.map_or(b',', |(separator, _)| separator), ..Self::RFC }
+    }
+
+    /// What it is called in a message.
+    pub(super) const fn separator_name(self) -> &'static str {
+        match self.separator {
+            b';' => "semicolons",
+            b'\t' => "tabs",
+            _ => "commas",
+        }
+    }
+
+    fn is_blank(self, byte: u8) -> bool {
+        is_blank(byte) && byte != self.separator
+    }
+}
+
 /// Walks through the records of a text.
 #[derive(Debug)]
 pub(super) struct Records<'a> {
     bytes: &'a [u8],
+    /// What stands between the cells.
+    pub(super) dialect: Dialect,
     pos: usize,
     /// 1-based line of the record last given.
     pub(super) line: u32,
@@ -36,12 +81,24 @@ impl<'a> Records<'a> {
     /// From the start, past a byte-order mark.
     pub(super) fn new(bytes: &'a [u8]) -> Self {
         let pos = if bytes.starts_with(b"\xEF\xBB\xBF") { 3 } else { 0 };
-        Self { bytes, pos, line: 1, next_line: 1, cells: Vec::new() }
+        Self { bytes, dialect: Dialect::RFC, pos, line: 1, next_line: 1, cells: Vec::new() }
     }
 
     /// From byte `pos`, where a record begins. Lines count from there.
-    pub(super) fn at(bytes: &'a [u8], pos: usize) -> Self {
-        Self { pos: pos.min(bytes.len()), ..Self::new(bytes) }
+    pub(super) fn at(bytes: &'a [u8], dialect: Dialect, pos: usize) -> Self {
+        Self { dialect, pos: pos.min(bytes.len()), ..Self::new(bytes) }
+    }
+
+    /// The next record as the header, which shows what stands between cells; `false` at the end.
+    ///
+    /// # Errors
+    /// As [`Records::next`].
+    pub(super) fn header(&mut self) -> Result<bool, CsvError> {
+        self.skip_empty_lines();
+        let rest = self.rest();
+        let length = rest.iter().position(|&byte| is_line_end(byte)).unwrap_or(rest.len());
+        self.dialect = Dialect::of_header(rest.get(..length).unwrap_or_default());
+        self.next()
     }
 
     /// Where the next record begins.
@@ -78,10 +135,12 @@ impl<'a> Records<'a> {
         loop {
             self.cell()?;
             match self.peek() {
-                Some(b',') if self.cells.len() < MAX_CELLS => self.advance(1),
-                Some(b',') => {
-                    let expected = format!("at most {MAX_CELLS} cells in a row");
-                    return Err(CsvError::unexpected(self.line, expected, "more"));
+                Some(byte) if byte == self.dialect.separator => {
+                    if self.cells.len() >= MAX_CELLS {
+                        let expected = format!("at most {MAX_CELLS} cells in a row");
+                        return Err(CsvError::unexpected(self.line, expected, "more"));
+                    }
+                    self.advance(1);
                 }
                 _ => break,
             }
@@ -91,13 +150,14 @@ impl<'a> Records<'a> {
     }
 
     fn cell(&mut self) -> Result<(), CsvError> {
-        while self.peek().is_some_and(is_blank) {
+        let dialect = self.dialect;
+        while self.peek().is_some_and(|byte| dialect.is_blank(byte)) {
             self.advance(1);
         }
         if self.peek() != Some(b'"') {
             let rest = self.rest();
-            let length =
-                rest.iter().position(|&byte| byte == b',' || is_line_end(byte)).unwrap_or(rest.len());
+            let is_end = |&byte: &u8| byte == dialect.separator || is_line_end(byte);
+            let length = rest.iter().position(is_end).unwrap_or(rest.len());
             self.push_trimmed(self.pos, self.pos.saturating_add(length));
             self.advance(length);
             return Ok(());
@@ -123,26 +183,30 @@ impl<'a> Records<'a> {
             }
         }
         self.push_trimmed(start, self.pos.saturating_sub(1));
-        while self.peek().is_some_and(is_blank) {
+        while self.peek().is_some_and(|byte| dialect.is_blank(byte)) {
             self.advance(1);
         }
         match self.peek() {
-            None | Some(b',' | b'\r' | b'\n') => Ok(()),
+            None | Some(b'\r' | b'\n') => Ok(()),
+            Some(byte) if byte == dialect.separator => Ok(()),
             Some(byte) => {
+                let separator = match dialect.separator {
+                    b';' => "a semicolon",
+                    b'\t' => "a tab",
+                    _ => "a comma",
+                };
+                let expected = format!("{separator} or the end of the line after a quote");
                 let found = format!("`{}`", char::from(byte).escape_default());
-                Err(CsvError::unexpected(
-                    self.next_line,
-                    "a comma or the end of the line after a quote",
-                    found,
-                ))
+                Err(CsvError::unexpected(self.next_line, expected, found))
             }
         }
     }
 
     fn push_trimmed(&mut self, start: usize, end: usize) {
         let bytes = self.bytes.get(start..end).unwrap_or_default();
-        let before = bytes.iter().take_while(|&&byte| is_blank(byte)).count();
-        let after = bytes.iter().rev().take_while(|&&byte| is_blank(byte)).count();
+        let is_blank = |byte: &&u8| self.dialect.is_blank(**byte);
+        let before = bytes.iter().take_while(is_blank).count();
+        let after = bytes.iter().rev().take_while(is_blank).count();
         let start = start.saturating_add(before);
         self.cells.push(Cell { start, end: end.saturating_sub(after).max(start) });
     }
@@ -224,6 +288,20 @@ pub(super) fn quoted(text: &str) -> String {
         .map(|c| if c.is_control() { c.escape_default().to_string() } else { c.to_string() })
         .collect();
     if text.chars().count() > LONGEST { format!("`{shown}…`") } else { format!("`{shown}`") }
+}
+
+/// The number in a cell with a decimal comma, if that is what it is: digits on both sides of one comma.
+pub(super) fn comma_number(bytes: &[u8], cell: Cell) -> Option<f64> {
+    let text = std::str::from_utf8(bytes.get(cell.start..cell.end)?).ok()?;
+    let (whole, part) = text.split_once(',')?;
+    let is_part = part.starts_with(|c: char| c.is_ascii_digit()) && !part.contains(['.', ',']);
+    if !is_part
+        || whole.contains('.')
+        || !whole.trim_start_matches(['-', '+']).bytes().all(|b| b.is_ascii_digit())
+    {
+        return None;
+    }
+    text.replace(',', ".").parse().ok().filter(|value: &f64| value.is_finite())
 }
 
 /// The number in a cell; NaN for an empty one and for what is not finite, `None` where none stands.

@@ -163,13 +163,7 @@ pub(super) fn columns(
     }
     let Some(time) = lower.iter().position(|name| name == "time" || name == "time_s") else {
         let expected = "a column time or time_s, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME";
-        let found = if header.len() < 2 && lower.iter().any(|name| name.contains(';') || name.contains('\t'))
-        {
-            format!("no comma in {}", quoted(&header.join(",")))
-        } else {
-            quoted(&header.join(","))
-        };
-        return Err(CsvError::unexpected(line, expected, found));
+        return Err(CsvError::unexpected(line, expected, quoted(&header.join(","))));
     };
     let mut joints: Vec<String> = Vec::new();
     let mut numbers: HashMap<&str, usize> = HashMap::new();

@@ -11,6 +11,9 @@
 //! Turns are relative to the parent. Lines `# joint NAME parent NAME offset X Y Z` before the header carry the skeleton;
 //! without them every joint is a root, unless a `NAME_hierarchy.csv` is given beside a `NAME_rot.csv`. Each row is a
 //! frame, at its own time. A quaternion sensor's `Time (s),W,X,Y,Z` is read as one joint.
+//!
+//! Where the header has semicolons or tabs between its names, cells are parted by these, and numbers may have a decimal comma
+//! in place of the point: one of the two in a whole file.
 
 mod bones;
 mod cells;
@@ -26,5 +29,5 @@ pub use bones::{Bone, hierarchy};
 pub use columns::{CsvOptions, NamedColumns, NoColumns, NoTimeUnit, TimeUnit};
 pub use create::from_clip;
 pub use error::{CsvError, CsvErrorKind};
-pub use read::{Document, read};
+pub use read::{Document, header, read};
 pub use write::write;

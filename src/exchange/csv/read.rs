@@ -14,7 +14,7 @@ use crate::rotor::{Axis, Rotor};
 use crate::skeleton::{Skeleton, SkeletonError};
 
 use super::bones::{assemble, bone};
-use super::cells::{Records, decoded, number, quoted, shown, text};
+use super::cells::{Dialect, Records, comma_number, decoded, number, quoted, shown, text};
 use super::columns::{Columns, CsvOptions, Role, columns};
 use super::error::{CsvError, CsvErrorKind};
 
@@ -37,6 +37,8 @@ pub struct Document {
     pub(super) rows: usize,
     /// Seconds that were taken from every time.
     pub(super) start_secs: f64,
+    /// What stands between cells and in numbers.
+    pub(super) dialect: Dialect,
 }
 
 impl fmt::Debug for Document {
@@ -97,11 +99,16 @@ pub fn read<'b>(
     {
         bones.clone_from(hierarchy);
     }
-    if !records.next()? {
+    if !records.header()? {
         let expected = "a header such as time,NAME.qx,NAME.qy,NAME.qz,NAME.qw";
         return Err(CsvError::unexpected(records.line, expected, "the end of the file"));
     }
     let header_line = records.line;
+    if records.dialect != Dialect::RFC {
+        let found = records.dialect.separator_name();
+        let text = format!("expected commas between cells, found {found}: read so, and kept when writing");
+        notes.push(Note::new(format!("line {header_line}"), text));
+    }
     let header: Vec<String> = records.cells.iter().map(|&cell| text(bytes, cell).into_owned()).collect();
     let mut columns = columns(&header, header_line, options, &mut notes)?;
     let rows_start = records.pos();
@@ -129,9 +136,21 @@ pub fn read<'b>(
     if rows == 0 {
         notes.push(Note::new("end of file", "expected rows, found none: a skeleton without a clip"));
     }
-    let document = Document { bytes: Arc::clone(&owned), columns, rows_start, rows, start_secs };
+    let dialect = records.dialect;
+    let document = Document { bytes: Arc::clone(&owned), columns, rows_start, rows, start_secs, dialect };
     let clip = clip(&document, skeleton, &values, width, times, name);
     Ok((document, clip, notes))
+}
+
+/// The names of a table's columns, whether or not they are understood.
+///
+/// # Errors
+/// When a quote is not closed.
+pub fn header(bytes: &[u8]) -> Result<Vec<String>, CsvError> {
+    let mut records = Records::new(bytes);
+    while records.comment().is_some() {}
+    records.header()?;
+    Ok(records.cells.iter().map(|&cell| text(bytes, cell).into_owned()).collect())
 }
 
 /// All cells, row by row; NaN where a column is not used.
@@ -145,6 +164,9 @@ fn rows(
     let mut values: Vec<f64> = Vec::new();
     let (mut missing, mut first_missing) = (0_usize, 0);
     let mut before = f64::NEG_INFINITY;
+    // Between commas a comma in quotes would be a thousands mark as likely as a decimal one.
+    let may_have_commas = records.dialect.separator != b',';
+    let mut mark: Option<u8> = None;
     while records.next()? {
         let line = records.line;
         let cells = &records.cells;
@@ -162,8 +184,18 @@ fn rows(
                 values.push(f64::NAN);
                 continue;
             }
+            let with_comma = || comma_number(bytes, cell).filter(|_| may_have_commas);
             let value = number(bytes, cell)
+                .or_else(with_comma)
                 .ok_or_else(|| CsvError::unexpected(line, "a number", shown(bytes, cell)).in_column(name))?;
+            let found = bytes[cell.start..cell.end].iter().find(|byte| matches!(byte, b'.' | b','));
+            if let Some(&found) = found.filter(|_| may_have_commas && value.is_finite())
+                && *mark.get_or_insert(found) != found
+            {
+                let expected = "one decimal mark in the whole file";
+                let found = format!("points and commas, the other one in {}", shown(bytes, cell));
+                return Err(CsvError::unexpected(line, expected, found).in_column(name));
+            }
             if *role == Role::Time {
                 if !is_measure(value) {
                     let expected = "a finite time";
@@ -182,6 +214,10 @@ fn rows(
             }
             values.push(value);
         }
+    }
+    if mark == Some(b',') {
+        records.dialect.decimal_comma = true;
+        notes.push(Note::new("rows", "expected decimal points, found decimal commas: read as points"));
     }
     if missing > 0 {
         let text = format!("expected finite numbers, found {missing} cells that are not: those are missing");

@@ -73,6 +73,36 @@ fn other_spellings_of_the_same_file_read_alike() {
 }
 
 #[test]
+fn semicolons_tabs_and_decimal_commas_read_alike_and_stay_when_cells_change() {
+    let between = |name: &str| {
+        format!("line 1: expected commas between cells, found {name}: read so, and kept when writing")
+    };
+    let commas = "rows: expected decimal points, found decimal commas: read as points";
+    let with_commas = SMALL.replace(',', ";").replace("0.", "0,").replace("1.5", "1,5");
+    reads_alike(SMALL.replace(',', ";"), &[&between("semicolons")]);
+    reads_alike(SMALL.replace(',', "\t"), &[&between("tabs")]);
+    reads_alike(SMALL.replace(',', " \t ").replace('\n', "\r\n"), &[&between("tabs")]);
+    reads_alike(&with_commas, &[&between("semicolons"), commas]);
+    reads_alike(with_commas.replace(';', "\t").replace("0,25", "\"2,5e-1\""), &[&between("tabs"), commas]);
+    // An empty first cell, and one between tabs, are cells.
+    let (_, clip, _) = opened("a.qx\ta.qy\ta.qz\ta.qw\ttime\n\t0\t0\t1\t0\n0\t\t0\t1\t1\n");
+    assert!(clip.rotation(0).unwrap().keys.iter().all(|key| !key.is_finite()));
+    // A changed cell has the file's own mark, a stretch its own separators.
+    let (document, clip, _) = opened(&with_commas);
+    let track = clip.rotation(0).unwrap();
+    let edited = clip.with_rotation(0, track.with_keys(&[(2, Rotor::from_xyzw([0.28, 0.0, 0.96, 0.0]))]));
+    let text = String::from_utf8(write(&document, &clip, &edited).0).unwrap();
+    assert_eq!(text, with_commas.replace("2;2;3;0;-1;0;0;", "2;2;3;0;0,28;0;0,96;"));
+    let part = crate::clip::cut(&clip, 0.25, 1.0);
+    let text = String::from_utf8(write(&document, &clip, &part).0).unwrap();
+    let lines: Vec<&str> = with_commas.lines().collect();
+    let rest = |line: &str| line.split_once(';').unwrap().1.to_owned();
+    assert_eq!(text, format!("{}\n0;{}\n0,75;{}\n", lines[0], rest(lines[2]), rest(lines[3])));
+    let bones = hierarchy(b"joint;parent;offset.x;offset.y;offset.z\nhip;;0,5;1;-2,25\n").unwrap();
+    assert_eq!(bones[0].rest.translation.to_array(), [0.5, 1.0, -2.25]);
+}
+
+#[test]
 fn a_skeleton_stands_in_lines_before_the_header() {
     let lines = "# joint leg of mine parent hip offset 0 -1 0.5\n# joint hip parent - offset 0 1e2 0\n# tip toe parent leg of mine offset 0 0 2\n\
         # joint eye parent hip offset 0 5 0 turn 0 0 0.6 0.8 size 1 2 3\n";
@@ -225,6 +255,7 @@ fn broken_files_are_refused_with_line_column_expected_and_found() {
         assert!(SMALL.contains(from), "{from}");
         SMALL.replacen(from, to, 1)
     };
+    let semicolons = |from: &str, to: &str| SMALL.replace(',', ";").replacen(from, to, 1);
     let head = "time,a.qx,a.qy,a.qz,a.qw\n";
     let cases: Vec<(String, &str)> = vec![
         (
@@ -237,8 +268,19 @@ fn broken_files_are_refused_with_line_column_expected_and_found() {
         ),
         (
             "a;b;c\n1;2;3\n".to_owned(),
-            "line 1: expected a column time or time_s, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME, found no comma in `a;b;c`",
+            "line 1: expected a column time or time_s, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME, found `a,b,c`",
         ),
+        (
+            semicolons("0.25;", "0,25;"),
+            "line 3, column hip.tx: expected one decimal mark in the whole file, found points and commas, the other one in `1.5`",
+        ),
+        (semicolons("0.25;", "1.000,25;"), "line 3, column time: expected a number, found `1.000,25`"),
+        (semicolons("0.25;", ",25e;"), "line 3, column time: expected a number, found `,25e`"),
+        (
+            semicolons("0.25;", "\"0.25\",5;"),
+            "line 3: expected a semicolon or the end of the line after a quote, found `,`",
+        ),
+        (with("0.25,1.5", "\"0,25\",1.5"), "line 3, column time: expected a number, found `0,25`"),
         (
             "frame,a.qx,a.qy,a.qz,a.qw\n".to_owned(),
             "line 1: expected a column time or time_s, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME, found `frame,a.qx,a.qy,a.qz,a.qw`",

@@ -4,7 +4,7 @@ use crate::clip::{Clip, RotationTrack, Stored};
 use crate::exchange::Note;
 use crate::rotor::Rotor;
 
-use super::cells::{Cell, Records, number};
+use super::cells::{Cell, Records, comma_number, number};
 use super::columns::Role;
 use super::create::{from_clip, number_text};
 use super::read::Document;
@@ -38,12 +38,13 @@ pub fn write(document: &Document, before: &Clip, after: &Clip) -> (Vec<u8>, Vec<
 /// Every cell of the rows, and its number; NaN for columns that are not used.
 fn cells(document: &Document) -> Vec<(Cell, f64)> {
     let bytes = &document.bytes[..];
-    let mut records = Records::at(bytes, document.rows_start);
+    let mut records = Records::at(bytes, document.dialect, document.rows_start);
     let width = document.columns.roles.len();
     let mut cells = Vec::with_capacity(document.rows * width);
     while records.next().unwrap_or(false) {
         cells.extend(records.cells.iter().take(width).zip(&document.columns.roles).map(|(&cell, role)| {
-            let value = if *role == Role::Unused { None } else { number(bytes, cell) };
+            let with_comma = || comma_number(bytes, cell).filter(|_| document.dialect.decimal_comma);
+            let value = if *role == Role::Unused { None } else { number(bytes, cell).or_else(with_comma) };
             (cell, value.unwrap_or(f64::NAN))
         }));
     }
@@ -264,7 +265,7 @@ fn patched(document: &Document, cells: &[(Cell, f64)], values: &[f64]) -> Vec<u8
     for ((cell, number), value) in cells.iter().zip(values) {
         if !same(*number, *value) {
             bytes.extend_from_slice(&document.bytes[copied..cell.start]);
-            bytes.extend_from_slice(number_text(*value).as_bytes());
+            bytes.extend_from_slice(cell_text(document, *value).as_bytes());
             copied = cell.end;
         }
     }
@@ -303,14 +304,17 @@ fn rewritten(document: &Document, cells: &[(Cell, f64)], values: &[f64], rows: u
     for row in 0..rows {
         for column in 0..width {
             if column > 0 {
-                bytes.push(b',');
+                bytes.push(document.dialect.separator);
             }
             let value = values[row * width + column];
             let index = offset.saturating_add(row * width + column);
             match cells.get(index).filter(|(_, number)| same(*number, value)) {
-                Some((cell, _)) => bytes.extend_from_slice(&quoted_again(&source[cell.start..cell.end])),
+                Some((cell, _)) => {
+                    let text = &source[cell.start..cell.end];
+                    bytes.extend_from_slice(&quoted_again(text, document.dialect.separator));
+                }
                 None if value.is_nan() => {}
-                None => bytes.extend_from_slice(number_text(value).as_bytes()),
+                None => bytes.extend_from_slice(cell_text(document, value).as_bytes()),
             }
         }
         bytes.extend_from_slice(line_end);
@@ -318,9 +322,15 @@ fn rewritten(document: &Document, cells: &[(Cell, f64)], values: &[f64], rows: u
     bytes
 }
 
+/// A number as the document has its own.
+fn cell_text(document: &Document, value: f64) -> String {
+    let text = number_text(value);
+    if document.dialect.decimal_comma { text.replace('.', ",") } else { text }
+}
+
 /// A cell's text with quotes round it where it needs them. Doubled quotes inside it are still doubled.
-fn quoted_again(text: &[u8]) -> Vec<u8> {
-    if text.iter().any(|byte| matches!(byte, b',' | b'"' | b'\r' | b'\n')) {
+fn quoted_again(text: &[u8], separator: u8) -> Vec<u8> {
+    if text.iter().any(|&byte| byte == separator || matches!(byte, b'"' | b'\r' | b'\n')) {
         [b"\"", text, b"\""].concat()
     } else {
         text.to_vec()
