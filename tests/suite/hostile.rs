@@ -501,7 +501,7 @@ fn short_numbers(channels: &[&str], numbers: &str) -> Vec<u8> {
     for joint in 0..n_joints {
         let kind = if joint == 0 { "ROOT" } else { "JOINT" };
         let (count, names) = (channels.len(), channels.join(" "));
-        text.push_str(&format!("{kind} j{joint} {{ OFFSET 0 1 0 CHANNELS {count} {names}\n"));
+        text.extend([kind, &format!(" j{joint} {{ OFFSET 0 1 0 CHANNELS {count} {names}\n")]);
     }
     text.push_str(&"}".repeat(n_joints));
     text.push_str("\nMOTION\nFrame Time: 0.01\n");

@@ -45,13 +45,11 @@ pub enum BvhErrorKind {
     TwoDecimalMarks(String),
     /// The tracks would take far more memory than the text.
     #[error(
-        "expected motion that takes at most {most_mb} MB in a file of this size, found {found_mb} MB; cut the file into shorter ones"
+        "expected motion that takes at most {most_mb} MB in a file of this size, found more; cut the file into shorter ones"
     )]
     TooManyNumbers {
         /// The most that is made of such a file.
         most_mb: usize,
-        /// What its numbers would take.
-        found_mb: usize,
     },
     /// Places in the text no longer fit their numbers.
     #[error("expected a file below 4 GiB, found {0} bytes")]

@@ -137,16 +137,15 @@ fn read_rows(
         let likely = ((rows.len() / columns.max(1)) as f64 * (whole / read)).ceil() as usize;
         if announced.abs_diff(likely) <= likely / 8 { announced } else { likely }
     };
-    let too_many = |scanner: &Scanner<'_>, (found, most): (usize, usize)| {
-        let kind = BvhErrorKind::TooManyNumbers { most_mb: most >> 20, found_mb: found >> 20 };
-        scanner.error(document.rows_start, kind)
+    let too_many = |scanner: &Scanner<'_>, most_bytes: usize| {
+        scanner.error(document.rows_start, BvhErrorKind::TooManyNumbers { most_mb: most_bytes >> 20 })
     };
     loop {
         if columns > 0 {
             scanner.plain_numbers(rows.tile_len, &mut rows.tile);
             if rows.tile.len() >= rows.tile_len {
                 let expected = expected(rows, scanner.pos());
-                rows.hand_out(expected).map_err(|bytes| too_many(scanner, bytes))?;
+                rows.hand_out(expected).map_err(|most| too_many(scanner, most))?;
                 continue;
             }
         }
@@ -180,7 +179,7 @@ fn read_rows(
         }
     }
     let complete = rows.len().checked_div(columns).unwrap_or(0);
-    rows.hand_out(complete).map_err(|bytes| too_many(scanner, bytes))?;
+    rows.hand_out(complete).map_err(|most| too_many(scanner, most))?;
     let left_over = rows.tile.len();
     if left_over > 0 {
         uneven_line(document, joints, scanner.pos())?;

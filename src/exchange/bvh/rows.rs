@@ -107,8 +107,8 @@ impl Rows {
     /// can be told.
     ///
     /// # Errors
-    /// When the tracks would take more memory than a file of this size may ask for: how much, and how much it may be.
-    pub(super) fn hand_out(&mut self, expected: usize) -> Result<(), (usize, usize)> {
+    /// When the tracks would take more memory than a file of this size may ask for: how many bytes that is.
+    pub(super) fn hand_out(&mut self, expected: usize) -> Result<(), usize> {
         let Some(count) = self.tile.len().checked_div(self.columns).filter(|&count| count > 0) else {
             return Ok(());
         };
@@ -116,9 +116,8 @@ impl Rows {
         let needed = self.done + count;
         let rows = &self.tile[..used];
         let row_bytes: usize = self.joints.iter().map(|joint| joint.row_bytes(rows, self.columns)).sum();
-        let bytes = row_bytes.saturating_mul(needed);
-        if bytes > self.most_bytes {
-            return Err((bytes, self.most_bytes));
+        if row_bytes.saturating_mul(needed) > self.most_bytes {
+            return Err(self.most_bytes);
         }
         if needed > self.capacity {
             // Room that grows by a few rows at a time would be copied over and over.
