@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use crate::rotor::Rotor;
-use crate::rotor::batch::Streams;
+use crate::rotor::batch::{PartsMut, Streams};
 
 use super::path::PathKind;
 use super::places::{Places, TILE};
@@ -72,26 +72,28 @@ impl Playing<'_> {
     }
 
     /// As [`Playing::rotations`], in streams as long as there are times.
-    pub(super) fn turns(&mut self, joint: usize, out: &mut Streams<f64, 4>) {
+    pub(super) fn turns(&mut self, joint: usize, mut out: PartsMut<'_, f64, 4>) {
         let clip = self.clip;
         let parts = |rotor: Rotor| [rotor.s, rotor.yz, rotor.zx, rotor.xy];
         let Some(track) = clip.rotation(joint).filter(|track| !track.times.is_empty()) else {
             let rest = clip.skeleton.joints()[joint].rest.rotation;
-            for (stream, part) in out.parts_mut().into_iter().zip(parts(rest)) {
+            for (stream, part) in out.into_iter().zip(parts(rest)) {
                 stream.fill(part);
             }
             return;
         };
         let Some(keys) = self.plain_keys(track) else {
             for (row, turn) in track.at_all_by(self.times_secs, self.path).into_iter().enumerate() {
-                out.set(row, parts(turn));
+                for (stream, part) in out.iter_mut().zip(parts(turn)) {
+                    stream[row] = part;
+                }
             }
             return;
         };
         let mut start = 0;
         let (places, sampler) = self.places(track);
         for places in places {
-            let tile = out.parts_mut().map(|stream| &mut stream[start..start + places.len]);
+            let tile = out.each_mut().map(|stream| &mut stream[start..start + places.len]);
             sampler.sample(keys, places, tile);
             start += places.len;
         }

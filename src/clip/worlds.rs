@@ -3,7 +3,7 @@
 use glam::DVec3;
 
 use crate::rotor::Rotor;
-use crate::rotor::batch::{self, Level, Parts, Streams};
+use crate::rotor::batch::{self, Bone, Level, Place, Streams, TREE_ROWS, TREE_TILES, Turns, World};
 use crate::skeleton::WorldJoint;
 
 use super::path::PathKind;
@@ -21,39 +21,32 @@ enum Form {
     Scaled(Vec<Vec<WorldJoint>>),
 }
 
-/// For each joint seven streams over the times: the parts of its turn and its place.
+/// The times in groups as [`batch::place_tree`] takes them: for each group all joints.
 #[derive(Clone, Debug)]
 struct Rigid {
-    numbers: Vec<f64>,
+    worlds: Vec<World<f64>>,
+    joints: usize,
     times: usize,
 }
 
 impl Rigid {
-    /// Numbers left free behind each stream: streams that begin at the same place of a memory page drive each other out of the
-    /// first cache.
-    const GAP: usize = 8;
-
-    fn stream(&self, joint: usize, part: usize) -> &[f64] {
-        let start = (7 * joint + part) * (self.times + Self::GAP);
-        &self.numbers[start..start + self.times]
-    }
-
-    fn turns(&self, joint: usize) -> Parts<'_, f64, 4> {
-        std::array::from_fn(|part| self.stream(joint, part))
-    }
-
-    fn places(&self, joint: usize) -> Parts<'_, f64, 3> {
-        std::array::from_fn(|part| self.stream(joint, part + 4))
-    }
-
-    /// The next joint.
-    fn push(&mut self, turns: Parts<'_, f64, 4>, places: Parts<'_, f64, 3>) {
-        for stream in turns.into_iter().chain(places) {
-            self.numbers.extend_from_slice(stream);
-            self.numbers.extend_from_slice(&[0.0; Self::GAP]);
-        }
+    /// Turn and place of a joint, part by part.
+    ///
+    /// # Panics
+    /// When there is no such joint or time.
+    fn parts(&self, joint: usize, time: usize) -> [f64; 7] {
+        let Self { worlds, joints, times } = self;
+        assert!(joint < *joints && time < *times, "expected {joints} joints and {times} times");
+        let (tile, row) = (time / TREE_ROWS % TREE_TILES, time % TREE_ROWS);
+        worlds[time / GROUP * joints + joint][tile].map(|column| column[row])
     }
 }
+
+/// Times of a group.
+const GROUP: usize = TREE_ROWS * TREE_TILES;
+
+/// Times that are sampled together, in whole groups; their turns stay in the cache of a core.
+const SAMPLED: usize = 4 * GROUP;
 
 impl Worlds {
     /// The product of all turns down to a joint, at the time with this index. Of scales only mirroring ones enter.
@@ -63,7 +56,7 @@ impl Worlds {
     pub fn rotation(&self, joint: usize, time: usize) -> Rotor {
         match &self.0 {
             Form::Rigid(rigid) => {
-                let [s, yz, zx, xy] = rigid.turns(joint).map(|stream| stream[time]);
+                let [s, yz, zx, xy, ..] = rigid.parts(joint, time);
                 Rotor::new(s, yz, zx, xy)
             }
             Form::Scaled(times) => times[time][joint].rotation,
@@ -76,7 +69,10 @@ impl Worlds {
     /// When there is no such joint or time.
     pub fn position(&self, joint: usize, time: usize) -> DVec3 {
         match &self.0 {
-            Form::Rigid(rigid) => rigid.places(joint).map(|stream| stream[time]).into(),
+            Form::Rigid(rigid) => {
+                let [.., x, y, z] = rigid.parts(joint, time);
+                DVec3::new(x, y, z)
+            }
             Form::Scaled(times) => times[time][joint].position(),
         }
     }
@@ -112,40 +108,89 @@ impl Clip {
             return Worlds(Form::Scaled(locals.iter().map(|local| self.skeleton.world(local)).collect()));
         }
         let count = times_secs.len();
-        let mut worlds =
-            Rigid { numbers: Vec::with_capacity(7 * joints.len() * (count + Rigid::GAP)), times: count };
-        let (mut turns, mut places) = (Streams::zeros(count), Streams::zeros(count));
-        let mut world = (Streams::zeros(count), Streams::zeros(count));
-        let mut playing = self.playing(times_secs, path);
-        for (joint, own) in joints.iter().enumerate() {
-            let tracks = self.joints.get(joint).map(|tracks| &**tracks);
-            playing.turns(joint, &mut turns);
-            let rest = own.rest.translation;
-            let track = tracks.and_then(|tracks| tracks.translation.as_ref());
-            let track = track.filter(|track| !track.times.is_empty());
-            if let Some(track) = track {
-                for (row, &secs) in times_secs.iter().enumerate() {
-                    places.set(row, track.at(secs).unwrap_or(rest).to_array());
-                }
-            }
-            let Some(parent) = own.parent else {
-                if track.is_none() {
-                    for (stream, part) in places.parts_mut().into_iter().zip(rest.to_array()) {
-                        stream.fill(part);
-                    }
-                }
-                worlds.push(turns.parts(), places.parts());
-                continue;
-            };
-            let above = (worlds.turns(parent), worlds.places(parent));
-            let out = (world.0.parts_mut(), world.1.parts_mut());
-            match track {
-                Some(_) => batch::carry(Level::best(), above, (turns.parts(), places.parts()), out),
-                None => batch::carry_bone(Level::best(), above, (turns.parts(), rest.to_array()), out),
-            }
-            worlds.push(world.0.parts(), world.1.parts());
+        let mut worlds = Vec::with_capacity(joints.len() * count.div_ceil(GROUP));
+        let mut desk = Desk::new(joints.len(), count.min(SAMPLED));
+        for times_secs in times_secs.chunks(SAMPLED) {
+            self.place_sampled(times_secs, path, &mut desk, &mut worlds);
         }
-        Worlds(Form::Rigid(worlds))
+        Worlds(Form::Rigid(Rigid { worlds, joints: joints.len(), times: count }))
+    }
+
+    /// The joints in the scene at up to [`SAMPLED`] times, behind those in `worlds`.
+    fn place_sampled(
+        &self,
+        times_secs: &[f64],
+        path: Option<PathKind>,
+        desk: &mut Desk,
+        worlds: &mut Vec<World<f64>>,
+    ) {
+        let joints = self.skeleton.joints();
+        let Desk { turns, group, sampled } = desk;
+        // Of the last group of a clip some rows may have no time; they keep what they were filled with before.
+        let mut playing = self.playing(times_secs, path);
+        for joint in 0..joints.len() {
+            playing.turns(joint, sampled.parts_mut().map(|stream| &mut stream[..times_secs.len()]));
+            for (part, stream) in sampled.parts().into_iter().enumerate() {
+                for (tile, column) in turns.iter_mut().zip(stream.as_chunks().0) {
+                    tile[joint][part] = *column;
+                }
+            }
+        }
+        for (group_index, times_secs) in times_secs.chunks(GROUP).enumerate() {
+            let places: Vec<Option<Places>> =
+                (0..joints.len()).map(|joint| self.places_of(joint, times_secs)).collect();
+            let bones: Vec<Bone<'_, f64>> = joints
+                .iter()
+                .zip(&places)
+                .map(|(joint, places)| {
+                    let fixed = || Place::Fixed(joint.rest.translation.to_array());
+                    Bone { parent: joint.parent, place: places.as_ref().map_or_else(fixed, Place::Each) }
+                })
+                .collect();
+            let tile = |tile: usize| turns[group_index * TREE_TILES + tile].as_slice();
+            batch::place_tree(Level::best(), &bones, std::array::from_fn(tile), group);
+            worlds.extend_from_slice(group);
+        }
+    }
+
+    /// Where a joint is in its parent's frame at the times of a group, if it moves there.
+    fn places_of(&self, joint: usize, times_secs: &[f64]) -> Option<Places> {
+        let tracks = self.joints.get(joint)?;
+        let track = tracks.translation.as_ref().filter(|track| !track.times.is_empty())?;
+        let rest = self.skeleton.joints()[joint].rest.translation;
+        let mut places = [[[0.0; TREE_ROWS]; 3]; TREE_TILES];
+        for (time, &secs) in times_secs.iter().enumerate() {
+            let place = track.at(secs).unwrap_or(rest).to_array();
+            for (column, part) in places[time / TREE_ROWS].iter_mut().zip(place) {
+                column[time % TREE_ROWS] = part;
+            }
+        }
+        Some(places)
+    }
+}
+
+/// Where a joint is in its parent's frame at the times of a group.
+type Places = [[[f64; TREE_ROWS]; 3]; TREE_TILES];
+
+/// Room for what is worked out together.
+struct Desk {
+    /// For each tile that is sampled together all joints.
+    turns: Vec<Vec<Turns<f64>>>,
+    /// All joints of a group.
+    group: Vec<World<f64>>,
+    /// The turns of one joint.
+    sampled: Streams<f64, 4>,
+}
+
+impl Desk {
+    /// For up to `times` at once.
+    fn new(joints: usize, times: usize) -> Self {
+        let tiles = times.div_ceil(GROUP) * TREE_TILES;
+        Self {
+            turns: vec![vec![[[0.0; TREE_ROWS]; 4]; joints]; tiles],
+            group: vec![[[[0.0; TREE_ROWS]; 7]; TREE_TILES]; joints],
+            sampled: Streams::zeros(SAMPLED),
+        }
     }
 }
 

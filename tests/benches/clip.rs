@@ -13,7 +13,7 @@ use cpu_time::CpuTime;
 use criterion::{Throughput, criterion_group, criterion_main};
 use glam::{DQuat, DVec3, Quat, Vec3};
 use turnwright::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times};
-use turnwright::rotor::batch::{self, Level, Real, Streams};
+use turnwright::rotor::batch::{self, Bone, Level, Place, Real, TREE_ROWS, TREE_TILES, Turns};
 use turnwright::rotor::{Bivector, Rotor};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
@@ -169,60 +169,51 @@ fn parent(joint: usize) -> Option<usize> {
     joint.checked_sub(1).map(|before| before - before % 4)
 }
 
-/// Forward kinematics alone, of 10,000 frames that lie in memory: turns in, turns and places out.
+/// Forward kinematics alone, of 10,000 frames whose turns lie in memory. The frames in the scene are handed on and not kept, as where
+/// whole clips are measured; `kept` writes all of them into memory.
 fn kinematics<F: Real>(
     criterion: &mut Criterion,
     name: &str,
     narrowed: impl Fn(f64) -> F + Copy,
     glam: impl FnOnce(&mut Group<'_>),
 ) {
-    const FRAMES_AT_ONCE: usize = 256;
-    let tiles = KINEMATIC_FRAMES.div_ceil(FRAMES_AT_ONCE);
     let mut group = criterion.benchmark_group(format!("place in the scene {name}"));
-    group.throughput(Throughput::Elements((JOINTS * KINEMATIC_FRAMES) as u64)).sample_size(10);
+    group.throughput(Throughput::Elements((JOINTS * KINEMATIC_FRAMES) as u64)).sample_size(20);
     group.warm_up_time(Duration::from_millis(300)).measurement_time(Duration::from_secs(2));
-    let turns: Vec<Vec<Streams<F, 4>>> = (0..tiles)
-        .map(|tile| {
-            let frames = FRAMES_AT_ONCE.min(KINEMATIC_FRAMES - tile * FRAMES_AT_ONCE);
-            let rows = |joint: usize| {
-                Streams::from_rows((0..frames).map(|frame| {
-                    let turn = turn(tile * FRAMES_AT_ONCE + frame, joint);
-                    [turn.s, turn.yz, turn.zx, turn.xy].map(narrowed)
-                }))
-            };
-            (0..JOINTS).map(rows).collect()
-        })
-        .collect();
-    let places: Vec<[F; 3]> = (0..JOINTS).map(|joint| place(joint).to_array().map(narrowed)).collect();
-    let mut worlds: Vec<Vec<(Streams<F, 4>, Streams<F, 3>)>> = turns
-        .iter()
-        .map(|tile| {
-            tile.iter().map(|turns| (Streams::zeros(turns.len()), Streams::zeros(turns.len()))).collect()
-        })
-        .collect();
-    for (name, level) in [("ours, baseline", Level::baseline()), ("ours", Level::best())] {
+    let tile = |tile: usize| -> Vec<Turns<F>> {
+        let of_joint = |joint: usize| {
+            let mut columns = [[narrowed(0.0); TREE_ROWS]; 4];
+            for row in 0..TREE_ROWS {
+                let turn = turn(tile * TREE_ROWS + row, joint);
+                for (column, part) in columns.iter_mut().zip([turn.s, turn.yz, turn.zx, turn.xy]) {
+                    column[row] = narrowed(part);
+                }
+            }
+            columns
+        };
+        (0..JOINTS).map(of_joint).collect()
+    };
+    let turns: Vec<Turns<F>> = (0..KINEMATIC_FRAMES / TREE_ROWS).flat_map(tile).collect();
+    let bone = |joint: usize| Bone {
+        parent: parent(joint),
+        place: Place::Fixed(place(joint).to_array().map(narrowed)),
+    };
+    let bones: Vec<Bone<'_, F>> = (0..JOINTS).map(bone).collect();
+    let calls = KINEMATIC_FRAMES / TREE_ROWS / TREE_TILES;
+    let mut worlds = vec![[[[narrowed(0.0); TREE_ROWS]; 7]; TREE_TILES]; JOINTS * calls];
+    for (name, level, are_kept) in [
+        ("ours, baseline", Level::baseline(), false),
+        ("ours", Level::best(), false),
+        ("ours, kept", Level::best(), true),
+    ] {
         group.bench_function(name, |bencher| {
             bencher.iter(|| {
-                for (turns, worlds) in black_box(&turns).iter().zip(&mut worlds) {
-                    for joint in 0..JOINTS {
-                        let (above, own) = worlds.split_at_mut(joint);
-                        let (own_turn, own_place) = &mut own[0];
-                        let Some((turn, at)) = parent(joint).map(|parent| &above[parent]) else {
-                            own_turn.clone_from(&turns[joint]);
-                            for (stream, part) in own_place.parts_mut().into_iter().zip(places[joint]) {
-                                stream.fill(part);
-                            }
-                            continue;
-                        };
-                        batch::carry_bone(
-                            level,
-                            (turn.parts(), at.parts()),
-                            (turns[joint].parts(), places[joint]),
-                            (own_turn.parts_mut(), own_place.parts_mut()),
-                        );
-                    }
+                for call in 0..calls {
+                    let tile = |tile: usize| &black_box(&turns)[(tile * calls + call) * JOINTS..][..JOINTS];
+                    let room = &mut worlds[if are_kept { call * JOINTS } else { 0 }..][..JOINTS];
+                    batch::place_tree(level, &bones, std::array::from_fn(tile), room);
+                    black_box(room);
                 }
-                black_box(&mut worlds);
             });
         });
     }
@@ -230,7 +221,8 @@ fn kinematics<F: Real>(
     group.finish();
 }
 
-const KINEMATIC_FRAMES: usize = 10_000;
+/// Whole calls of four tiles.
+const KINEMATIC_FRAMES: usize = 10_016;
 
 macro_rules! glam_kinematics {
     ($quat:ty, $vec:ty, $turn:expr, $place:expr) => {
@@ -241,20 +233,22 @@ macro_rules! glam_kinematics {
             let places: Vec<$vec> = (0..JOINTS).map(|joint| $place(place(joint))).collect();
             let parents: Vec<Option<usize>> = (0..JOINTS).map(parent).collect();
             let mut worlds = vec![(<$quat>::IDENTITY, <$vec>::ZERO); turns.len()];
-            group.bench_function("glam", |bencher| {
-                bencher.iter(|| {
-                    let frames = black_box(&turns).chunks_exact(JOINTS);
-                    for (turns, world) in frames.zip(worlds.chunks_exact_mut(JOINTS)) {
-                        for joint in 0..JOINTS {
-                            world[joint] = match parents[joint].map(|parent| world[parent]) {
-                                Some((turn, at)) => (turn * turns[joint], at + turn * places[joint]),
-                                None => (turns[joint], places[joint]),
-                            };
+            for (name, are_kept) in [("glam", false), ("glam, kept", true)] {
+                group.bench_function(name, |bencher| {
+                    bencher.iter(|| {
+                        for (frame, turns) in black_box(&turns).chunks_exact(JOINTS).enumerate() {
+                            let world = &mut worlds[if are_kept { frame * JOINTS } else { 0 }..][..JOINTS];
+                            for joint in 0..JOINTS {
+                                world[joint] = match parents[joint].map(|parent| world[parent]) {
+                                    Some((turn, at)) => (turn * turns[joint], at + turn * places[joint]),
+                                    None => (turns[joint], places[joint]),
+                                };
+                            }
+                            black_box(world);
                         }
-                    }
-                    black_box(&mut worlds);
+                    });
                 });
-            });
+            }
         }
     };
 }

@@ -1,5 +1,5 @@
 use serde_json::Value;
-use turnwright::rotor::batch::{self, Level, Real, Streams};
+use turnwright::rotor::batch::{self, Bone, Level, Place, Real, Streams, TREE_ROWS, TREE_TILES, Turns};
 use turnwright::rotor::{Axis, Bivector, EndRates, EulerOrder, RotationSpline, Rotor, slerp, squad};
 
 use crate::support::{Distance, Tally, list, number, numbers};
@@ -254,32 +254,106 @@ fn near_the_middle_the_short_form_is_slerp() {
     }
 }
 
-#[test]
-fn carrying_is_the_product_and_the_place_in_the_parents_frame() {
-    let mut numbers = Numbers(7);
-    let (parents, turns) = (numbers.rotors(200), numbers.rotors(200));
-    let mut points =
-        || -> Vec<[f64; 3]> { (0..200).map(|_| std::array::from_fn(|_| numbers.next())).collect() };
-    let (at, places) = (points(), points());
-    let (above, at_rows) = (rows(&parents), Streams::from_rows(at.iter().copied()));
-    let (own, place_rows) = (rows(&turns), Streams::from_rows(places.iter().copied()));
-    for (name, level) in LEVELS {
-        let (mut turned, mut placed) = (Streams::zeros(200), Streams::zeros(200));
-        let parent = (above.parts(), at_rows.parts());
-        let world = (turned.parts_mut(), placed.parts_mut());
-        batch::carry(level(), parent, (own.parts(), place_rows.parts()), world);
-        let (mut same_turned, mut same_placed) = (Streams::zeros(200), Streams::zeros(200));
-        let world = (same_turned.parts_mut(), same_placed.parts_mut());
-        batch::carry_bone(level(), parent, (own.parts(), places[0]), world);
-        for row in 0..200 {
-            let exact =
-                |place: [f64; 3]| (glam::DVec3::from(at[row]) + parents[row].apply(place.into())).to_array();
-            assert_eq!(rotor(turned.get(row)), parents[row] * turns[row], "{name} row {row}");
-            assert_eq!(same_turned.get(row), turned.get(row), "{name} row {row}");
-            assert!(placed.get(row).distance_to(&exact(places[row])) < 2e-15, "{name} row {row}");
-            assert!(same_placed.get(row).distance_to(&exact(places[0])) < 2e-15, "{name} row {row}");
-        }
+/// A joint alone: for each row the turn and place of the parent, and its own relative to it.
+fn placed_alone(
+    bones: &[Option<usize>],
+    turns: &[[Rotor; TIMES]],
+    places: &[[glam::DVec3; TIMES]],
+) -> Vec<[(Rotor, glam::DVec3); TIMES]> {
+    let mut worlds: Vec<[(Rotor, glam::DVec3); TIMES]> = vec![];
+    for (joint, parent) in bones.iter().enumerate() {
+        let world = std::array::from_fn(|time| {
+            let (turn, place) = (turns[joint][time], places[joint][time]);
+            parent.map_or((turn, place), |parent| {
+                let (above, at) = worlds[parent][time];
+                (above * turn, at + above.apply(place))
+            })
+        });
+        worlds.push(world);
     }
+    worlds
+}
+
+const TIMES: usize = TREE_ROWS * TREE_TILES;
+
+#[test]
+fn a_tree_is_the_product_and_the_place_in_the_parents_frame_joint_by_joint() {
+    let mut numbers = Numbers(7);
+    // A root that walks, two chains, one joint that slides in its parent's frame, and a second root that stands.
+    let parents = [None, Some(0), Some(1), Some(0), Some(3), Some(4), None, Some(6)];
+    let moves = [0, 4];
+    let turns: Vec<[Rotor; TIMES]> =
+        parents.iter().map(|_| std::array::from_fn(|_| numbers.rotor())).collect();
+    let places: Vec<[glam::DVec3; TIMES]> = (0..parents.len())
+        .map(|joint| {
+            let mut place = || glam::DVec3::new(numbers.next(), numbers.next(), numbers.next());
+            let still = place();
+            std::array::from_fn(|_| if moves.contains(&joint) { place() } else { still })
+        })
+        .collect();
+    let tile = |tile: usize| -> Vec<Turns<f64>> {
+        let parts = |joint: usize| {
+            std::array::from_fn(|part| {
+                std::array::from_fn(|row| {
+                    let turn = turns[joint][tile * TREE_ROWS + row];
+                    [turn.s, turn.yz, turn.zx, turn.xy][part]
+                })
+            })
+        };
+        (0..parents.len()).map(parts).collect()
+    };
+    let tiles: [Vec<Turns<f64>>; TREE_TILES] = std::array::from_fn(tile);
+    let each: Vec<[[[f64; TREE_ROWS]; 3]; TREE_TILES]> = places
+        .iter()
+        .map(|places| {
+            std::array::from_fn(|tile| {
+                std::array::from_fn(|part| std::array::from_fn(|row| places[tile * TREE_ROWS + row][part]))
+            })
+        })
+        .collect();
+    let bones: Vec<Bone<'_, f64>> = (0..parents.len())
+        .map(|joint| Bone {
+            parent: parents[joint],
+            place: if moves.contains(&joint) {
+                Place::Each(&each[joint])
+            } else {
+                Place::Fixed(places[joint][0].to_array())
+            },
+        })
+        .collect();
+    let alone = placed_alone(&parents, &turns, &places);
+    let mut both = vec![];
+    for (name, level) in LEVELS {
+        let mut worlds = vec![[[[0.0; TREE_ROWS]; 7]; TREE_TILES]; parents.len()];
+        batch::place_tree(level(), &bones, tiles.each_ref().map(Vec::as_slice), &mut worlds);
+        for (joint, alone) in alone.iter().enumerate() {
+            for (time, (turn, place)) in alone.iter().enumerate() {
+                let found = worlds[joint][time / TREE_ROWS].map(|column| column[time % TREE_ROWS]);
+                let [s, yz, zx, xy, x, y, z] = found;
+                assert_eq!(Rotor::new(s, yz, zx, xy), *turn, "{name} joint {joint} time {time}");
+                let apart = place.distance(glam::DVec3::new(x, y, z));
+                assert!(apart < 5e-15, "{name} joint {joint} time {time}: {apart:e}");
+            }
+        }
+        both.push(
+            worlds
+                .as_flattened()
+                .as_flattened()
+                .as_flattened()
+                .iter()
+                .map(|x| x.to_bits())
+                .collect::<Vec<_>>(),
+        );
+    }
+    assert_eq!(both[0], both[1], "the same bits at both levels");
+}
+
+#[test]
+#[should_panic(expected = "expected 2 joints, found 1")]
+fn a_tree_of_other_size_than_its_turns_is_told() {
+    let bone = Bone { parent: None, place: Place::Fixed([0.0; 3]) };
+    let turns: [Turns<f64>; 1] = [[[1.0; TREE_ROWS]; 4]];
+    batch::place_tree(Level::best(), &[bone; 2], [&turns[..]; TREE_TILES], &mut []);
 }
 
 #[test]

@@ -39,14 +39,16 @@ mod product;
 mod real;
 mod slerp;
 mod streams;
+mod tree;
 mod turn;
 
 pub use euler::{euler_angles, euler_rotors};
 pub(super) use exp_log::angle_over_sine;
 pub use exp_log::{exp, log};
 pub use level::Level;
-pub use product::{apply, carry, carry_bone, compose};
+pub use product::{apply, compose};
 pub use real::Real;
 pub use slerp::{slerp, slerp_at_middle, squad};
 pub use streams::{Parts, PartsMut, Streams};
+pub use tree::{Bone, Place, TREE_ROWS, TREE_TILES, Turns, World, place_tree};
 pub use turn::turns;
