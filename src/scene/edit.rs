@@ -211,7 +211,33 @@ pub enum EditError {
 }
 
 impl Edit {
-    /// What the history calls it.
+    /// What the history calls it, when it is applied to `before`: as [`Edit::label`], and a pass that it only has the number of is
+    /// called by its title.
+    pub fn label_in(&self, before: &Document) -> String {
+        let titled = |work: usize, pass: PassId| {
+            let passes = &before.works.get(work)?.passes;
+            let place = place_of(passes, pass).ok()?;
+            Some((place, passes[place].step.title()))
+        };
+        let words = match self {
+            Self::SwitchPass { work, pass, on } => titled(*work, *pass)
+                .map(|(_, title)| format!("Switch {}: {title}", if *on { "on" } else { "off" })),
+            Self::MovePass { work, pass, to } => titled(*work, *pass)
+                .map(|(place, title)| format!("Move {}: {title}", if *to < place { "up" } else { "down" })),
+            Self::RemovePass { work, pass } => {
+                titled(*work, *pass).map(|(_, title)| format!("Remove: {title}"))
+            }
+            Self::SetScope { work, pass, .. } => {
+                titled(*work, *pass).map(|(_, title)| format!("Set where it acts: {title}"))
+            }
+            Self::SetAmount { work, pass, amount } => titled(*work, *pass)
+                .map(|(_, title)| format!("Set amount to {:.0} %: {title}", amount * 100.0)),
+            _ => None,
+        };
+        words.unwrap_or_else(|| self.label())
+    }
+
+    /// What it does, for people, whatever document it is applied to.
     pub fn label(&self) -> String {
         let counted =
             |verb: &str, count: usize| format!("{verb} {count} snag{}", if count == 1 { "" } else { "s" });
@@ -223,14 +249,14 @@ impl Edit {
             Self::Unmend { marks, .. } => counted("Take back", marks.len()),
             Self::Leave { marks, .. } => counted("Leave", marks.len()),
             Self::Reconsider { marks, .. } => counted("Reconsider", marks.len()),
-            Self::SwitchPass { on: true, .. } => "Switch pass on".to_owned(),
-            Self::SwitchPass { on: false, .. } => "Switch pass off".to_owned(),
+            Self::SwitchPass { on: true, .. } => "Switch on a pass".to_owned(),
+            Self::SwitchPass { on: false, .. } => "Switch off a pass".to_owned(),
             Self::AddPass { step, .. } => format!("Add pass: {}", step.title()),
             Self::ChangePass { step, .. } => format!("Change pass: {}", step.title()),
             Self::SetScope { .. } => "Set where a pass acts".to_owned(),
             Self::SetAmount { amount, .. } => format!("Set amount to {:.0} %", amount * 100.0),
-            Self::MovePass { .. } => "Move pass".to_owned(),
-            Self::RemovePass { .. } => "Remove pass".to_owned(),
+            Self::MovePass { .. } => "Move a pass".to_owned(),
+            Self::RemovePass { .. } => "Remove a pass".to_owned(),
             Self::SetLimits { limits: Some(limits), .. } => format!("Set limits: {}", limits.title),
             Self::SetLimits { limits: None, .. } => "Set no limits".to_owned(),
             Self::SetSearch { search, .. } => match (search.is_loop, search.finds_slides) {

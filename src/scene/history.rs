@@ -64,12 +64,13 @@ impl History {
     pub fn commit(&mut self, edit: &Edit) -> Result<(), EditError> {
         self.stroke = None;
         let document = edit.apply(self.document())?;
+        let label = edit.label_in(self.document());
         if document == **self.document() {
             return Ok(());
         }
         self.steps.truncate(self.current + 1);
         let revision = self.new_revision();
-        self.steps.push(Step { label: edit.label(), revision, document: Arc::new(document) });
+        self.steps.push(Step { label, revision, document: Arc::new(document) });
         if self.steps.len() > MOST_STEPS {
             self.steps.remove(0);
         }
@@ -91,7 +92,8 @@ impl History {
         }
         let document = Arc::new(edit.apply(self.document())?);
         let revision = self.new_revision();
-        self.steps[self.current] = Step { label: edit.label(), revision, document };
+        let label = edit.label_in(self.document());
+        self.steps[self.current] = Step { label, revision, document };
         Ok(())
     }
 
@@ -144,6 +146,30 @@ mod tests {
     use super::super::pass::{MendPass, PassId};
     use super::*;
     use crate::snag::SnagKind;
+
+    #[test]
+    fn steps_call_passes_by_their_titles() {
+        let mut history =
+            History::new(Document { sources: vec![], works: vec![ClipWork::new(0, 0, "walk")] });
+        for kind in [SnagKind::Spike, SnagKind::Jitter] {
+            let step = MendPass::new(kind, vec![]).into();
+            history.commit(&Edit::AddPass { work: 0, step, at: 9 }).unwrap();
+        }
+        for (edit, label) in [
+            (Edit::SwitchPass { work: 0, pass: PassId(1), on: false }, "Switch off: Mend jitter (0 snags)"),
+            (Edit::SwitchPass { work: 0, pass: PassId(1), on: true }, "Switch on: Mend jitter (0 snags)"),
+            (Edit::MovePass { work: 0, pass: PassId(1), to: 0 }, "Move up: Mend jitter (0 snags)"),
+            (Edit::MovePass { work: 0, pass: PassId(1), to: 1 }, "Move down: Mend jitter (0 snags)"),
+            (
+                Edit::SetAmount { work: 0, pass: PassId(0), amount: 0.5 },
+                "Set amount to 50 %: Mend spike (0 snags)",
+            ),
+            (Edit::RemovePass { work: 0, pass: PassId(0) }, "Remove: Mend spike (0 snags)"),
+        ] {
+            history.commit(&edit).unwrap();
+            assert_eq!(history.undo_label(), Some(label));
+        }
+    }
 
     #[test]
     fn a_stroke_is_one_step_until_something_else_happens() {
