@@ -14,22 +14,18 @@ pub(crate) fn bench_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     }
     let bounds = ui.available_rect_before_wrap();
     let layout = scope.settings.layout;
-    let areas = layout.areas(bounds);
+    let has_lane = scope.now.has_blend && scope.now.shows_blend_lane;
+    let areas = if has_lane { layout.areas_with_lane(bounds) } else { layout.areas(bounds) };
     area(ui, areas.skeleton, Hint::Skeleton, scope, skeleton::skeleton_ui);
     area(ui, areas.joint_sheet, Hint::JointSheet, scope, joint_sheet::joint_sheet_ui);
     area(ui, areas.map, Hint::TurnMap, scope, turn_map::turn_map_ui);
-    let mut below = areas.curves;
-    if scope.now.has_blend && scope.now.shows_blend_lane {
-        let height = (bounds.height() * 0.20).clamp(144.0, 260.0).min(below.height() * 0.55).round();
-        let lane = Rect::from_min_max(below.min, egui::pos2(below.right(), below.top() + height));
-        below.min.y = lane.bottom();
-        part(ui, lane, "blend lane", scope, blend_lane::blend_lane_ui);
-        ui.painter().hline(below.x_range(), below.top(), (1.0, scope.look.line));
+    if has_lane {
+        part(ui, areas.lane, "blend lane", scope, blend_lane::blend_lane_ui);
     }
-    area(ui, below, Hint::Curves, scope, curves::curves_ui);
+    area(ui, areas.curves, Hint::Curves, scope, curves::curves_ui);
     area(ui, areas.snags, Hint::Snags, scope, snags::snags_ui);
     area(ui, areas.passes, Hint::Passes, scope, passes::passes_ui);
-    for divider in Divider::ALL {
+    for divider in Divider::ALL.into_iter().filter(|&divider| has_lane || divider != Divider::Lane) {
         divider_ui(ui, bounds, &layout, Layout::line(&areas, divider), divider, scope);
     }
     ui.advance_cursor_after_rect(bounds);
@@ -132,14 +128,14 @@ fn divider_ui(ui: &Ui, bounds: Rect, layout: &Layout, line: Rect, divider: Divid
         });
         if steps != 0.0 {
             let by = vec2(STEP, STEP) * steps;
-            let share = Layout::share_at(bounds, divider, line.center() + by);
+            let share = layout.share_at(bounds, divider, line.center() + by);
             scope.out.push(Command::Settings(SettingsCommand::Divide(divider, Some(share))));
         }
     }
     if response.double_clicked() {
         scope.out.push(Command::Settings(SettingsCommand::Divide(divider, None)));
     } else if let Some(pointer) = response.interact_pointer_pos().filter(|_| response.dragged()) {
-        let share = Layout::share_at(bounds, divider, pointer);
+        let share = layout.share_at(bounds, divider, pointer);
         scope.out.push(Command::Settings(SettingsCommand::Divide(divider, Some(share))));
     }
     let is_held = response.hovered() || response.dragged() || response.has_focus();
