@@ -4,7 +4,7 @@ use std::path::PathBuf;
 use std::sync::Arc;
 use std::time::Duration;
 
-use egui::{Context, Event, Key, Ui};
+use egui::{Context, Event, Key, KeyboardShortcut, Ui};
 
 use crate::exchange::{ClipAddress, Source};
 
@@ -167,15 +167,25 @@ impl Window {
         if !is_typing {
             self.take_clipboard_keys(ui);
         }
-        for (keys, action) in Keymap::of(ui.ctx()).all() {
-            let is_plain = keys.modifiers.is_none() && !is_function_key(keys.logical_key);
-            if (is_plain && has_focus) || (is_typing && !is_function_key(keys.logical_key)) {
-                continue;
-            }
-            if ui.input_mut(|input| input.consume_shortcut(&keys)) {
-                self.commands.push(Command::Do(action));
-            }
-        }
+        let keymap = Keymap::of(ui.ctx()).all();
+        let is_ours = |keys: &KeyboardShortcut| {
+            let is_function = is_function_key(keys.logical_key);
+            is_function || !(is_typing || (keys.modifiers.is_none() && has_focus))
+        };
+        // In the order in which they were pressed, and each as often: a slow frame may bring many.
+        let mut pressed = Vec::new();
+        ui.input_mut(|input| {
+            input.events.retain(|event| {
+                let Event::Key { key, modifiers, pressed: true, .. } = event else { return true };
+                let means = |(keys, _): &&(KeyboardShortcut, Action)| {
+                    keys.logical_key == *key && modifiers.matches_logically(keys.modifiers) && is_ours(keys)
+                };
+                let found = keymap.iter().find(means);
+                pressed.extend(found.map(|(_, action)| Command::Do(*action)));
+                found.is_none()
+            });
+        });
+        self.commands.extend(pressed);
     }
 
     /// The desktop's keys for copying and pasting come as events of their own.
