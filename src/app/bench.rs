@@ -10,6 +10,8 @@ use crate::scene::{
     ClipWork, Document, Edit, Evaluation, Evaluator, History, Library, Loaded, Pass, PassId, PassStep,
     Revision, SearchChoice, SnagMark, SourceRef,
 };
+use crate::skeleton::Skeleton;
+use crate::skeleton::roles::Roles;
 use crate::snag::Snag;
 
 use super::blend_state::BlendWork;
@@ -255,6 +257,8 @@ pub struct Bench {
     pub more_curves: Vec<FromClips<CurveKey, Arc<CurveSet>>>,
     /// What is being done to the curves by hand.
     pub curve_hand: CurveHand,
+    /// Which joint of a skeleton plays which part.
+    pub roles: Option<(Arc<Skeleton>, Arc<Roles>)>,
     /// What is known of the blend that is looked at.
     pub blend: Option<BlendWork>,
     /// The retarget that is looked at, made ready.
@@ -309,6 +313,12 @@ impl Bench {
     pub fn curve_key(&self, joint: usize) -> CurveKey {
         let limits = self.limits().map(|limits| limits.get(joint).copied());
         CurveKey { joint, view: self.session.curve_view, limit: limits.flatten() }
+    }
+
+    /// Which joint of this skeleton plays which part, once it has been worked out.
+    pub fn roles_of(&self, skeleton: &Arc<Skeleton>) -> Option<&Roles> {
+        let (known, roles) = self.roles.as_ref()?;
+        Arc::ptr_eq(known, skeleton).then_some(&**roles)
     }
 
     /// The limits of the joints on show.

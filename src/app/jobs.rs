@@ -23,6 +23,8 @@ pub enum Slot {
     Heat,
     /// The rotation curves.
     Curves,
+    /// Which joint plays which part.
+    Roles,
     /// Writing the scene.
     Save,
     /// Writing clips.
@@ -49,6 +51,7 @@ impl Slot {
             Self::Limits => "Working out limits",
             Self::Heat => "Drawing the turn map",
             Self::Curves => "Sampling curves",
+            Self::Roles => "Telling limbs apart",
             Self::Save | Self::Settings => "Saving",
             Self::Export => "Exporting",
             Self::Blend => "Comparing clips",
@@ -61,7 +64,13 @@ impl Slot {
     const fn is_quick(self) -> bool {
         matches!(
             self,
-            Self::Evaluate | Self::Curves | Self::Save | Self::Blend | Self::Carry | Self::Settings
+            Self::Evaluate
+                | Self::Curves
+                | Self::Roles
+                | Self::Save
+                | Self::Blend
+                | Self::Carry
+                | Self::Settings
         )
     }
 }

@@ -17,6 +17,8 @@ use super::limits::Fitted;
 use crate::clip::Clip;
 use crate::exchange::Source;
 use crate::scene::{Edit, Revision, SourceRef};
+use crate::skeleton::Skeleton;
+use crate::skeleton::roles::Roles;
 use crate::snag::Snag;
 
 /// What a job came to.
@@ -73,6 +75,8 @@ pub(crate) enum Answer {
     },
     /// The turn map.
     Heat(FromClips<HeatWish, Arc<HeatMap>>),
+    /// Which joint of a skeleton plays which part.
+    Roles(Arc<Skeleton>, Arc<Roles>),
     /// The curves.
     Curves(Vec<FromClips<CurveKey, Arc<CurveSet>>>),
     /// The scene was written, or not.
@@ -137,6 +141,7 @@ impl Window {
             Answer::Limits { serial, work, is_for_pass, result } => {
                 self.take_limits(serial, work, is_for_pass, result);
             }
+            Answer::Roles(skeleton, roles) => self.bench.roles = Some((skeleton, roles)),
             Answer::Surveyed { serial, work, searched, snags } => {
                 if let Some(findings) =
                     self.project_mut(serial).and_then(|project| project.findings.get_mut(work))

@@ -12,6 +12,8 @@ use super::answers::Answer;
 use crate::clip::Clip;
 use crate::mend::{SurveyOptions, survey};
 use crate::scene::Pass;
+use crate::skeleton::Skeleton;
+use crate::skeleton::roles::Roles;
 
 /// Passes by work.
 type Behind = Vec<(usize, Vec<Pass>)>;
@@ -27,6 +29,8 @@ pub(crate) struct Asked {
     pub heat: Option<FromClips<HeatWish, ()>>,
     /// Clips, joints and view.
     pub curves: Option<FromClips<Vec<CurveKey>, ()>>,
+    /// A skeleton.
+    pub roles: Option<Arc<Skeleton>>,
     /// A blend.
     pub blend: Option<BlendKey>,
     /// What a retarget hangs on.
@@ -49,6 +53,21 @@ impl Window {
         };
         self.order_heat(&before, &result);
         self.order_curves(&before, &result);
+        self.order_roles(&result.skeleton);
+    }
+
+    /// Until it is known which joints are an arm or a leg the skeleton view has no tip to draw a limb by.
+    fn order_roles(&mut self, skeleton: &Arc<Skeleton>) {
+        let is_ordered = self.asked.roles.as_ref().is_some_and(|asked| Arc::ptr_eq(asked, skeleton));
+        if is_ordered || self.bench.roles_of(skeleton).is_some() {
+            return;
+        }
+        let skeleton = Arc::clone(skeleton);
+        self.asked.roles = Some(Arc::clone(&skeleton));
+        self.jobs.submit(Slot::Roles, move |_| {
+            let roles = Arc::new(Roles::find(&skeleton));
+            Some(Answer::Roles(skeleton, roles))
+        });
     }
 
     fn serial(&self) -> u64 {

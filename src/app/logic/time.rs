@@ -3,6 +3,7 @@
 use std::collections::BTreeSet;
 
 use super::super::commands::TimeCommand;
+use super::super::panels::Message;
 use super::super::view_models::{TimeChoice, TimeWindow, limb_starts};
 use super::super::window::Window;
 use super::limits::LimitsFrom;
@@ -71,7 +72,16 @@ impl Window {
     /// Folds every limb to one row, or shows all joints.
     pub(super) fn fold_limbs(&mut self, folds: bool) {
         let Some(clip) = self.bench.result() else { return };
-        let folded = if folds { limb_starts(&clip.skeleton) } else { BTreeSet::new() };
+        let folded = if folds {
+            let Some(roles) = self.bench.roles_of(&clip.skeleton) else {
+                let words = "It is not yet known which joints make a limb: in a moment";
+                self.tell(Message::done(words.to_owned()));
+                return;
+            };
+            limb_starts(&clip.skeleton, roles)
+        } else {
+            BTreeSet::new()
+        };
         self.bench.session.folded = folded;
     }
 

@@ -87,11 +87,10 @@ pub fn map_rows(
 
 /// The joints to fold so that each limb is one row: the first of every arm, leg, finger, neck, tail and what else hangs on the
 /// trunk. Where no chains are known, everything that hangs on a joint with several children.
-pub fn limb_starts(skeleton: &Skeleton) -> BTreeSet<usize> {
+pub fn limb_starts(skeleton: &Skeleton, roles: &Roles) -> BTreeSet<usize> {
     let has_children = |joint: &usize| {
         skeleton.listed().any(|other| other != *joint && skeleton.parent_joint(other) == Some(*joint))
     };
-    let roles = Roles::find(skeleton);
     let limbs = roles.chains.iter().filter(|chain| chain.kind != ChainKind::Trunk);
     let starts: BTreeSet<usize> =
         limbs.filter_map(|chain| chain.joints.first().copied()).filter(has_children).collect();

@@ -128,7 +128,7 @@ fn show(
     let space = &session.space;
     let alone = session.shows_source_alone();
     let stage = scope.pictures.stage(source);
-    let roles = scope.pictures.roles(&result.skeleton);
+    let roles = scope.bench.roles_of(&result.skeleton);
     let joint = session.joint.filter(|&joint| joint < result.skeleton.len());
     let grip = scope.pictures.grip.as_ref();
     let swept = grip.and_then(|grip| grip.drag.swept(grip.snap_rad));
@@ -149,6 +149,7 @@ fn show(
             session.follows,
             has_handles,
             grip.is_some(),
+            roles.is_some(),
         ],
         space: space.clone(),
         ready,
@@ -159,7 +160,7 @@ fn show(
     };
     let handling = has_handles.then_some(Handling {
         planes: space.planes,
-        roles: Some(&roles),
+        roles,
         ready: ready.disc,
         tip_is_ready: ready.tip,
         swept,
