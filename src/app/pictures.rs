@@ -8,14 +8,13 @@ use egui::{ColorImage, Context, Rect, TextureHandle, TextureOptions, pos2};
 use crate::clip::Clip;
 use crate::limit::JointLimit;
 use crate::raster::{Camera, Canvas, SceneView, render_into};
-use crate::skeleton::roles::Roles;
-use crate::skeleton::{LocalPose, Skeleton};
+use crate::skeleton::LocalPose;
 
 use super::panels::{CurvePress, DistanceKey};
 use super::session::{Disc, SpaceHabits};
 use super::view_models::{
-    CarryEye, Drag, FaintFigure, FigureView, HandTurns, HeatMap, MapRow, Memo, Stage, Swept, TimeWindow,
-    Trail,
+    CarryEye, Drag, FaintFigure, FigureView, HandTurns, HeatMap, MapRow, Memo, Room, RoomKey, Stage, Swept,
+    TimeWindow, Trail,
 };
 
 /// A texture and the key of what is on it.
@@ -75,8 +74,8 @@ pub(crate) struct SkeletonKey {
     pub faint: Vec<FaintFigure>,
     /// Chosen joint and joint under the pointer.
     pub joints: [Option<usize>; 2],
-    /// Dark, source as well, source alone, following, with handles, one of them held.
-    pub switches: [bool; 6],
+    /// Dark, source as well, source alone, following, with handles, one of them held, with known limbs.
+    pub switches: [bool; 7],
     /// How the view is set.
     pub space: SpaceHabits,
     /// What can be taken hold of.
@@ -186,13 +185,13 @@ pub(crate) struct CarryPictureKey {
 pub(crate) struct Pictures {
     /// The skeleton view.
     pub skeleton: Picture<SkeletonKey>,
-    /// What was drawn there last: for choosing a limb with the pointer.
     /// The two figures of the retarget sheet.
     pub carry: [Picture<CarryPictureKey>; 2],
     /// What was drawn there last.
     pub carry_views: [Option<SceneView>; 2],
     /// The joint of source and target under the pointer there.
     pub carry_hovered: [Option<usize>; 2],
+    /// What was drawn last in the skeleton view: for choosing a limb with the pointer.
     pub figure: Option<FigureView>,
     /// The handle that is held.
     pub grip: Option<Grip>,
@@ -200,8 +199,6 @@ pub(crate) struct Pictures {
     pub ready: Ready,
     /// The way of the chosen joint's tip in the source and in the result.
     pub trails: [Trail; 2],
-    /// Which joint plays which part.
-    pub roles: Memo<SkeletonOf, Arc<Roles>>,
     /// The turn map.
     pub map: Picture<MapKey>,
     /// Its rows.
@@ -220,6 +217,8 @@ pub(crate) struct Pictures {
     pub scroll_to_joint: Option<usize>,
     /// The press that is held in the turn map began on the mark of a snag.
     pub press_is_on_mark: bool,
+    /// How far the curve with the dot may go.
+    pub room: Memo<RoomKey, Vec<Room>>,
     /// What a press on the curves has taken hold of.
     pub curve_press: Option<CurvePress>,
     /// The snag table is to bring the chosen snag into view.
@@ -238,23 +237,7 @@ impl PartialEq for ClipKey {
     }
 }
 
-/// A skeleton by its identity.
-#[derive(Clone, Debug)]
-pub(crate) struct SkeletonOf(pub Arc<Skeleton>);
-
-impl PartialEq for SkeletonOf {
-    fn eq(&self, other: &Self) -> bool {
-        Arc::ptr_eq(&self.0, &other.0)
-    }
-}
-
 impl Pictures {
-    /// Which joint plays which part.
-    pub(crate) fn roles(&mut self, skeleton: &Arc<Skeleton>) -> Arc<Roles> {
-        let key = SkeletonOf(Arc::clone(skeleton));
-        Arc::clone(self.roles.get_or_compute(key, |key| Arc::new(Roles::find(&key.0))))
-    }
-
     /// Floor and travel of a clip.
     pub(crate) fn stage(&mut self, clip: &Arc<Clip>) -> Arc<Stage> {
         Arc::clone(self.stage.get_or_compute(ClipKey(Arc::clone(clip)), |key| Arc::new(Stage::new(&key.0))))

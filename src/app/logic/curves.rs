@@ -8,8 +8,8 @@ use super::super::commands::{CurveAction, CurveCommand};
 use super::super::curve_hand::ShownStroke;
 use super::super::panels::Message;
 use super::super::view_models::{
-    CurveKey, CurveSet, Grip, KeyBase, KeyChoice, KeyDrag, Stroke, counted, fitted_values, key_at,
-    local_curves, with_more, with_more_pushes,
+    CurveKey, CurveSet, Grip, KeyBase, KeyChoice, KeyDrag, Stretch, Stroke, counted, fitted_values, key_at,
+    local_curves, stretches, with_more, with_more_pushes,
 };
 use super::super::window::Window;
 use crate::clip::{
@@ -23,6 +23,10 @@ use crate::skeleton::Mirror;
 const REACH_SECS: [f64; 2] = [0.02, 30.0];
 /// So much a key on the keyboard turns, degrees.
 const STEP_DEG: f64 = 1.0;
+/// Told where a path or a spacing would change nothing.
+const NOTHING_TO_SHAPE: &str = "There is no segment here that a path could shape. It needs two keys with frames between them; \
+                                where a key stands at each frame, choose a stretch of keys first: by a drag along the lane below \
+                                the curves";
 /// Tells the strokes of this area from those of others.
 const STROKE: u64 = 0x4355_5256_0000_0000;
 
@@ -395,7 +399,13 @@ impl Window {
         let Some(clip) = self.bench.result().cloned() else { return };
         let Some(joint) = self.bench.session.joint else { return };
         let now = self.bench.session.playback.playhead_secs;
-        let start = clip.rotation(joint).and_then(|track| segment_at(track, now));
+        let track = clip.rotation(joint).filter(|track| !track.times.is_empty());
+        let fits =
+            |track: &RotationTrack, start: f64| !stretches(joint, track, &clip.grid, &[start]).is_empty();
+        let start = track.and_then(|track| segment_at(track, now).filter(|&start| fits(track, start)));
+        if start.is_none() {
+            self.tell(Message::done(NOTHING_TO_SHAPE.to_owned()));
+        }
         self.bench.session.curves.segment = start.map(|secs| (joint, secs));
         self.bench.curve_hand.serial += 1;
     }
@@ -497,72 +507,108 @@ impl Window {
         self.commit_stroke(&base, stroke, choice, label, Some(3));
     }
 
-    /// The starts of the segments that are meant: the chosen one, else those from each chosen key to the next key, else those the
-    /// playhead is in.
-    fn meant_segments(&self, base: &KeyBase) -> Vec<(usize, Vec<f64>)> {
+    /// What a path, a spacing or turns are meant for: the chosen segment, else what lies between the chosen keys, else the segments that the
+    /// playhead is in, and in captured motion the chosen stretch of time.
+    fn meant_stretches(&self, base: &KeyBase) -> Vec<Stretch> {
         let session = &self.bench.session;
-        if let Some((joint, secs)) = session.curves.segment {
-            return vec![(joint, vec![secs])];
-        }
-        let starts = |joint: usize, times: &[f64]| -> Vec<f64> {
-            let Some(track) = base.clip.rotation(joint) else { return Vec::new() };
-            let has_next = |secs: &f64| key_at(track, *secs).is_some_and(|key| key + 1 < track.keys.len());
-            let mut starts: Vec<f64> = times.iter().copied().filter(has_next).collect();
-            // Between two chosen keys lies what is meant, behind the last one only where it is alone.
-            if starts.len() > 1 && starts.len() == times.len() {
-                starts.pop();
-            }
-            starts
+        let of = |joint: usize, times: &[f64]| {
+            let track = base.clip.rotation(joint).filter(|track| !track.times.is_empty());
+            track.map_or_else(Vec::new, |track| stretches(joint, track, &base.clip.grid, times))
         };
+        if let Some((joint, secs)) = session.curves.segment {
+            return of(joint, &[secs]);
+        }
         if !session.curves.keys.is_empty() {
-            return session.curves.keys.rows().map(|(joint, times)| (joint, starts(joint, times))).collect();
+            return session.curves.keys.rows().flat_map(|(joint, times)| of(joint, times)).collect();
         }
         let now = session.playback.playhead_secs;
-        let here = |joint: usize| Some((joint, vec![segment_at(base.clip.rotation(joint)?, now)?]));
-        session.joints().into_iter().filter_map(here).collect()
+        let here = |joint: usize| {
+            let Some(track) = base.clip.rotation(joint) else { return Vec::new() };
+            let own = segment_at(track, now).map_or_else(Vec::new, |start| of(joint, &[start]));
+            match self.chosen_span().filter(|_| own.is_empty()) {
+                Some([from, to]) => {
+                    let within = |secs: &f64| (from - 1e-9..=to + 1e-9).contains(secs);
+                    of(joint, &track.times.iter().filter(within).collect::<Vec<f64>>())
+                }
+                None => own,
+            }
+        };
+        session.joints().into_iter().flat_map(here).collect()
     }
 
-    fn change_segments(&mut self, label: &str, change: impl Fn(&RotationTrack, Vec<f64>) -> Vec<KeyChange>) {
+    /// Changes what is meant, as one step; `change` gets a segment's path and turns.
+    fn change_segments(
+        &mut self,
+        label: &str,
+        change: impl Fn(Vec<f64>, PathKind, MeantTurn) -> Option<KeyChange>,
+    ) {
         let Some(base) = self.key_base() else { return };
-        let mut edits = Vec::new();
-        for (joint, starts) in self.meant_segments(&base) {
-            let Some(track) = base.clip.rotation(joint) else { continue };
-            if !starts.is_empty() {
-                edits.extend(change(track, starts).into_iter().map(|change| KeyEdit { joint, change }));
-            }
+        let meant = self.meant_stretches(&base);
+        let last = self.bench.work().and_then(|work| work.passes.last()).filter(|pass| pass.on);
+        let edits_of = |step: &PassStep| match step {
+            PassStep::Keys(own) => own.edits.clone(),
+            _ => Vec::new(),
+        };
+        // Once the keys have given way the same stretch is shaped on, whatever rows the file keeps.
+        let known = last.map_or_else(Vec::new, |pass| edits_of(&pass.step));
+        let is_free = known.iter().all(|edit| !matches!(edit.change, KeyChange::Move(_)));
+        let goes_on = is_free && meant.iter().all(|own| own.is_known(&known));
+        let known = if goes_on { known } else { Vec::new() };
+        let mut edits: Vec<KeyEdit> = Vec::new();
+        for own in &meant {
+            let Some(track) = base.clip.rotation(own.joint) else { continue };
+            let (kind, turn) = own.path_and_turn(track, &known);
+            let Some(change) = change(vec![own.start_secs], kind, turn) else { continue };
+            edits.extend(own.clearing().filter(|_| !goes_on));
+            edits.push(KeyEdit { joint: own.joint, change });
         }
         if edits.is_empty() {
-            self.tell(Message::done("There is no segment here: it needs two keys".to_owned()));
+            self.tell(Message::done(NOTHING_TO_SHAPE.to_owned()));
             return;
         }
-        self.commit_keys(&base, edits, label.to_owned());
+        let gone: usize = meant.iter().map(|own| own.gone_secs.len()).sum();
+        let label = if gone == 0 {
+            label.to_owned()
+        } else {
+            format!("{label}, over {}", counted(gone + 2 * meant.len(), "key"))
+        };
+        self.commit_keys(&base, edits, label);
+        self.choose_shaped(&base, &meant);
+    }
+
+    /// Where keys have given way the segment that is left is chosen, so that its spacing can be drawn; rows of a file stay, and stay
+    /// chosen.
+    fn choose_shaped(&mut self, base: &KeyBase, meant: &[Stretch]) {
+        let is_row_track =
+            |own: &Stretch| base.clip.rotation(own.joint).is_some_and(|track| has_rows(&base.clip, track));
+        if let [only] = meant
+            && !only.gone_secs.is_empty()
+            && !is_row_track(only)
+        {
+            self.bench.session.curves.keys = KeyChoice::default();
+            self.bench.session.curves.segment = Some((only.joint, only.start_secs));
+        }
     }
 
     fn set_path(&mut self, kind: PathKind) {
-        self.change_segments(&format!("Path: {}", kind.name()), |_, starts| {
-            vec![KeyChange::Path(starts, kind)]
+        self.change_segments(&format!("Path: {}", kind.name()), |starts, _, _| {
+            Some(KeyChange::Path(starts, kind))
         });
     }
 
     fn set_spacing(&mut self, spacing: Spacing) {
         let label = format!("Spacing: {}", spacing_name(spacing));
-        self.change_segments(&label, |_, starts| vec![KeyChange::Space(starts, spacing)]);
+        self.change_segments(&label, |starts, _, _| Some(KeyChange::Space(starts, spacing)));
     }
 
     fn set_turns(&mut self, label: &str, change: impl Fn(i32) -> i32) {
-        self.change_segments(label, |track, starts| {
-            let turned = |secs: f64| {
-                let segment = key_at(track, secs)?;
-                let own = track.segments.of(segment).turn;
-                let whole = change(own.whole());
-                let turn = match own.plane() {
-                    Some(plane) => MeantTurn::in_plane(whole, plane),
-                    None => MeantTurn::new(whole),
-                };
-                let takes = track.kind_of(segment, None).takes_turns();
-                Some(KeyChange::Turn(vec![secs], turn.ok().filter(|_| takes)?))
+        self.change_segments(label, |starts, kind, own| {
+            let whole = change(own.whole());
+            let turn = match own.plane() {
+                Some(plane) => MeantTurn::in_plane(whole, plane),
+                None => MeantTurn::new(whole),
             };
-            starts.into_iter().filter_map(turned).collect()
+            Some(KeyChange::Turn(starts, turn.ok().filter(|_| kind.takes_turns())?))
         });
     }
 
@@ -648,15 +694,25 @@ fn edit_of(work: usize, own: &ClipWork, base: &Clip, stroke: &Stroke) -> Edit {
     }
 }
 
+/// Whether a joint's track keeps the rows of a file, one for each frame.
+fn has_rows(clip: &Clip, track: &RotationTrack) -> bool {
+    track.stored != Stored::Rotors && track.keys.len() >= clip.grid.count()
+}
+
 /// Whether edits can follow others in one pass. A track of a file's rows keeps a row for each frame whatever its keys were moved to:
-/// what was moved or taken away in one pass is a row again for the next.
+/// what was moved or taken away in one pass is a row again for the next. A path, a spacing and turns between keys that stay can
+/// follow what was taken away.
 fn goes_on(base: &Clip, known: &[KeyEdit], more: &[KeyEdit]) -> bool {
-    let has_rows = |joint: usize| {
-        base.rotation(joint)
-            .is_some_and(|track| track.stored != Stored::Rotors && track.keys.len() >= base.grid.count())
+    let stands_against = |own: &KeyEdit, edit: &KeyEdit| match (&own.change, &edit.change) {
+        (
+            KeyChange::Delete(gone),
+            KeyChange::Path(starts, _) | KeyChange::Space(starts, _) | KeyChange::Turn(starts, _),
+        ) => starts.iter().any(|start| gone.contains(start)),
+        (KeyChange::Delete(_) | KeyChange::Move(_), _) => true,
+        _ => false,
     };
-    let moves = |edit: &KeyEdit| matches!(edit.change, KeyChange::Move(_) | KeyChange::Delete(_));
-    !more
-        .iter()
-        .any(|edit| has_rows(edit.joint) && known.iter().any(|own| own.joint == edit.joint && moves(own)))
+    !more.iter().any(|edit| {
+        base.rotation(edit.joint).is_some_and(|track| has_rows(base, track))
+            && known.iter().any(|own| own.joint == edit.joint && stands_against(own, edit))
+    })
 }

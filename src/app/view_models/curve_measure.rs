@@ -67,6 +67,17 @@ impl Measure {
         Some(most.min(std::f64::consts::PI))
     }
 
+    /// The turn that three numbers of the view mean, in degrees. `None` where the view's numbers are no such triple.
+    pub fn turn_of(&self, degrees: [f64; 3]) -> Option<Rotor> {
+        match (self.view, &self.form) {
+            (CurveView::PlaneAngles, _) | (CurveView::FileNumbers, Form::PlaneAngles) => {
+                Some(Rotor::from_plane_angles(Bivector::from_degrees(degrees)))
+            }
+            (CurveView::FileNumbers, Form::Angles(angles)) => Some(angles.rotor(degrees)),
+            (CurveView::FileNumbers, Form::Rotors) | (CurveView::SwingTwist | CurveView::TurnRate, _) => None,
+        }
+    }
+
     /// The turn that comes of moving one number of the view by so many degrees, with its other numbers left alone. `shown` are
     /// the numbers on screen, which may tell of whole turns that the rotor does not know. `None` where the number can't be
     /// moved alone.

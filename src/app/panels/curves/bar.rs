@@ -172,6 +172,42 @@ fn keys_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
         };
         field.show(ui, scope, |to| KeyDrag::Move { grip: grip(line), by_secs: 0.0, by_deg: to });
     }
+    shape_ui(ui, scope);
+}
+
+/// The spacings that have a name, with the words of the bar.
+const SPACINGS: [(Spacing, &str); 4] = [
+    (Spacing::Even, "even"),
+    (Spacing::EaseIn, "ease in"),
+    (Spacing::EaseOut, "ease out"),
+    (Spacing::EaseBoth, "ease both"),
+];
+
+/// Path and spacing for what lies between the chosen keys.
+fn shape_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+    let path = ui.menu_button(RichText::new("path").size(12.5), |ui| {
+        for kind in PathKind::ALL.into_iter().filter(|kind| *kind != PathKind::Cubic) {
+            if ui.button(kind.name()).clicked() {
+                scope.out.push(Command::Curve(CurveCommand::SetPath(kind)));
+                ui.close();
+            }
+        }
+    });
+    let info = || WidgetInfo::labeled(Role::ComboBox, true, "Path between the chosen keys");
+    path.response.widget_info(info);
+    let tip = "From key to key; where a key stands at each frame, from the first chosen one to the last";
+    path.response.on_hover_text(tip);
+    let spacing = ui.menu_button(RichText::new("spacing").size(12.5), |ui| {
+        for (spacing, name) in SPACINGS {
+            if ui.button(name).clicked() {
+                scope.out.push(Command::Curve(CurveCommand::SetSpacing(spacing)));
+                ui.close();
+            }
+        }
+    });
+    let info = || WidgetInfo::labeled(Role::ComboBox, true, "Spacing between the chosen keys");
+    spacing.response.widget_info(info);
+    spacing.response.on_hover_text("How fast the way is gone; as with the path");
 }
 
 fn segment_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
@@ -197,17 +233,11 @@ fn segment_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
     }
     words(ui, scope, "spacing");
     let own = track.segments.of(segment);
-    let named = [
-        (Spacing::Even, "even"),
-        (Spacing::EaseIn, "ease in"),
-        (Spacing::EaseOut, "ease out"),
-        (Spacing::EaseBoth, "ease both"),
-    ];
-    let name = named.iter().find(|(spacing, _)| *spacing == own.spacing).map_or("own", |(_, name)| name);
+    let name = SPACINGS.iter().find(|(spacing, _)| *spacing == own.spacing).map_or("own", |(_, name)| name);
     let mut spacing = own.spacing;
     let combo = ComboBox::from_id_salt("spacing").selected_text(name).width(74.0);
     let response = combo.show_ui(ui, |ui| {
-        for (each, name) in named {
+        for (each, name) in SPACINGS {
             ui.selectable_value(&mut spacing, each, name);
         }
     });

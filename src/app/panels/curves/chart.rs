@@ -5,7 +5,7 @@ use std::sync::Arc;
 use egui::{Pos2, Rect, pos2};
 
 use super::super::super::curve_hand::ShownStroke;
-use super::super::super::view_models::{CurveSet, Grip, KeyChoice, LocalCurves};
+use super::super::super::view_models::{CurveSet, Grip, KeyChoice, LocalCurves, is_frame_apart};
 use super::super::super::widgets::TimeAxis;
 use super::axis::ValueAxis;
 use crate::clip::{Clip, RotationTrack};
@@ -150,11 +150,8 @@ impl Chart<'_> {
 
     /// Whether the joint has a key at about each frame there.
     pub(super) fn is_dense(&self, joint: usize, secs: f64) -> bool {
-        /// Slower than this nothing is captured: such keys were set by hand, and their clip is counted in them.
-        const LONGEST_SECS: f64 = 0.1;
-        let rate = self.clip.grid.rate;
-        let is_dense = |length: f64| length * rate < 1.5 && length < LONGEST_SECS;
-        self.segment(joint, secs).is_some_and(|[start, end]| is_dense(end - start))
+        let grid = &self.clip.grid;
+        self.segment(joint, secs).is_some_and(|[start, end]| is_frame_apart(grid, end - start))
     }
 
     /// Chosen keys in a rectangle on screen.

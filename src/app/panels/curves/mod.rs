@@ -7,6 +7,7 @@ mod draw;
 mod hand;
 mod keys;
 mod marks;
+mod room;
 mod spacing;
 
 use egui::{Rangef, Rect, Role, Sense, Ui, WidgetInfo, pos2, vec2};
@@ -107,6 +108,7 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         Rangef::new(area.top(), plot.bottom() + 4.0),
     ));
     marks::bands_ui(&inside, &look, &chart);
+    room::room_ui(&inside, &chart, scope);
     marks::snag_spans_ui(&inside, &axis, plot, &joints, scope);
     marks::lines_ui(&inside, &look, &chart, session.shows_before);
     marks::segment_ui(&inside, &look, &chart, session.curves.segment);
