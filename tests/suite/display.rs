@@ -85,7 +85,7 @@ impl Desk {
             }
             let ended = self.ended();
             assert!(ended.is_none(), "no `{what}`: the program ended with {ended:?}");
-            if start.elapsed() > Duration::from_mins(2) {
+            if start.elapsed() > Duration::from_mins(5) {
                 let shown = self.tool(&["search", "--name", ".", "getwindowname", "%@"]);
                 panic!("no `{what}` on display {}; windows there: {shown:?}", self.display);
             }
@@ -112,6 +112,24 @@ impl Desk {
     pub(crate) fn end(&self) -> ExitStatus {
         let mut program = self.program.take().expect("it was started");
         self.wait("the end of the program", || program.0.try_wait().expect("a child can be asked"))
+    }
+
+    /// Presses a key again and again until the program has ended by itself, and sees that it ended well.
+    #[track_caller]
+    pub(crate) fn press_until_end(&self, key: &str) {
+        let mut program = self.program.take().expect("it was started");
+        let ended = self.wait("the end of the program", || {
+            self.press(key);
+            let pressed = Instant::now();
+            while pressed.elapsed() < Duration::from_secs(4) {
+                if let Some(status) = program.0.try_wait().expect("a child can be asked") {
+                    return Some(status);
+                }
+                std::thread::sleep(Duration::from_millis(100));
+            }
+            None
+        });
+        assert!(ended.success(), "{ended}");
     }
 
     /// Presses a key again and again until something is so: the first press may come before the window listens. Only for keys

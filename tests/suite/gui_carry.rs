@@ -2,72 +2,26 @@
 
 use std::path::{Path, PathBuf};
 
-use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
+use turnwright::app::Start;
 use turnwright::app::commands::{Action, CarryCommand, CarrySheet, Command};
 use turnwright::app::view_models::CarryState;
-use turnwright::app::{Start, Window};
 use turnwright::exchange::{ClipAddress, OpenOptions, disk, open};
 use turnwright::retarget::{HoldAt, KeptLimits};
 use turnwright::scene::{PassId, RetargetPass};
 
-use crate::gui_harness::window_harness;
+use crate::gui_harness::Bench;
 use crate::support::shared;
 
-struct Sheet<'a>(Harness<'a, Option<Window>>);
-
-impl Sheet<'_> {
-    fn open(clip: &Path, size: [f32; 2]) -> Self {
-        let start = Start::Files(vec![ClipAddress { path: clip.to_owned(), clip: None }]);
-        let harness = window_harness(size, start);
-        let mut sheet = Self(harness);
-        sheet.run();
-        sheet
-    }
-
-    fn run(&mut self) {
-        self.0.run_steps(4);
-    }
-
-    fn window(&self) -> &Window {
-        self.0.state().as_ref().expect("the window is made in the first frame")
-    }
-
-    fn ask(&mut self, command: Command) {
-        self.0.state_mut().as_mut().expect("a window").ask(command);
-        self.run();
-    }
-
-    #[track_caller]
-    fn click(&mut self, label: &str) {
-        self.0.get_by_label(label).click();
-        self.run();
-    }
-
-    #[track_caller]
-    fn click_beginning(&mut self, beginning: &str) {
-        self.0.get_all_by_label_contains(beginning).next().expect("a widget with that label").click();
-        self.run();
-    }
-
+impl Bench<'_> {
     #[track_caller]
     fn pass(&self) -> (PassId, RetargetPass) {
         self.window().bench().carried_pass().expect("a retarget")
     }
+}
 
-    /// Steps that undo can take back.
-    fn steps(&self) -> usize {
-        self.window().bench().project.as_ref().expect("a project").history.steps().1
-    }
-
-    fn undo(&mut self) {
-        self.0.key_press_modifiers(egui::Modifiers::COMMAND, egui::Key::Z);
-        self.run();
-    }
-
-    fn messages(&self) -> String {
-        self.window().messages().collect::<Vec<_>>().join("\n")
-    }
+fn open_clip(clip: &Path, size: [f32; 2]) -> Bench<'static> {
+    Bench::of_size(Start::Files(vec![ClipAddress { path: clip.to_owned(), clip: None }]), size)
 }
 
 fn files() -> Option<(PathBuf, PathBuf)> {
@@ -78,7 +32,7 @@ fn files() -> Option<(PathBuf, PathBuf)> {
 fn a_walk_is_carried_onto_a_figure_changed_and_exported() {
     let Some((walk, figure)) = files() else { return };
     let folder = tempfile::tempdir().expect("a folder");
-    let mut sheet = Sheet::open(&walk, [1440.0, 900.0]);
+    let mut sheet = open_clip(&walk, [1440.0, 900.0]);
     sheet.ask(Command::Do(Action::Retarget));
     sheet.0.get_by_label("Use this file");
     sheet.ask(Command::Carry(CarryCommand::OpenOnto(figure.clone())));
@@ -147,7 +101,7 @@ fn a_walk_is_carried_onto_a_figure_changed_and_exported() {
 #[test]
 fn a_contact_that_is_dragged_is_one_step() {
     let Some((walk, figure)) = files() else { return };
-    let mut sheet = Sheet::open(&walk, [1440.0, 900.0]);
+    let mut sheet = open_clip(&walk, [1440.0, 900.0]);
     sheet.ask(Command::Carry(CarryCommand::OpenOnto(figure)));
     let before = sheet.steps();
     let found =
@@ -196,7 +150,7 @@ fn a_contact_that_is_dragged_is_one_step() {
 fn a_map_is_saved_loaded_and_what_is_wrong_is_told_in_the_sheet() {
     let Some((walk, figure)) = files() else { return };
     let folder = tempfile::tempdir().expect("a folder");
-    let mut sheet = Sheet::open(&walk, [1280.0, 720.0]);
+    let mut sheet = open_clip(&walk, [1280.0, 720.0]);
     sheet.ask(Command::Do(Action::Retarget));
     sheet.ask(Command::Carry(CarryCommand::OpenOnto(folder.path().join("missing.glb"))));
     assert!(sheet.0.get_all_by_label_contains("missing.glb").next().is_some());
@@ -230,7 +184,7 @@ fn an_animal_gets_questions_and_no_arms() {
     let (Some(walk), Some(fox)) = (shared("data/bvh/walk01.bvh"), shared("data/gltf/Fox.glb")) else {
         return;
     };
-    let mut sheet = Sheet::open(&walk, [1280.0, 720.0]);
+    let mut sheet = open_clip(&walk, [1280.0, 720.0]);
     sheet.ask(Command::Carry(CarryCommand::OpenOnto(fox)));
     let facts = sheet.window().bench().carry.as_ref().expect("work").facts.clone().expect("facts");
     assert!(facts.rows.iter().any(|row| row.is_question), "{:?}", facts.rows);

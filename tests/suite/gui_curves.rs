@@ -2,16 +2,16 @@
 
 #![expect(clippy::unwrap_used, reason = "helpers of tests fail as tests do")]
 
+use std::ops::{Deref, DerefMut};
 use std::path::PathBuf;
 use std::sync::Arc;
 
 use egui::{Event, Key, Modifiers, PointerButton, Pos2, Vec2, vec2};
-use egui_kittest::Harness;
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use glam::DVec3;
+use turnwright::app::Start;
 use turnwright::app::commands::{Action, Command, CurveAction, CurveCommand};
-use turnwright::app::view_models::{CurveView, KeyChoice, TimeWindow, seconds};
-use turnwright::app::{Start, Window};
+use turnwright::app::view_models::{CurveView, KeyChoice, RoomKey, TimeWindow, limit_room, seconds};
 use turnwright::clip::{Clip, FrameGrid, JointTracks, PathKind, RotationTrack, Spacing, Times};
 use turnwright::exchange::{ClipAddress, disk, gltf};
 use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
@@ -19,13 +19,27 @@ use turnwright::rotor::{Bivector, Rotor};
 use turnwright::scene::{Edit, PassStep};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
-use crate::gui_harness::window_harness;
+use crate::gui_harness::Bench;
 use crate::support::shared;
 
 /// A window on one clip of its own.
 struct Desk<'a> {
-    harness: Harness<'a, Option<Window>>,
+    bench: Bench<'a>,
     _folder: tempfile::TempDir,
+}
+
+impl<'a> Deref for Desk<'a> {
+    type Target = Bench<'a>;
+
+    fn deref(&self) -> &Bench<'a> {
+        &self.bench
+    }
+}
+
+impl DerefMut for Desk<'_> {
+    fn deref_mut(&mut self) -> &mut Self::Target {
+        &mut self.bench
+    }
 }
 
 const ARM: &str = "LeftArm";
@@ -93,32 +107,11 @@ impl Desk<'_> {
 
     fn of_size(path: PathBuf, folder: tempfile::TempDir, size: [f32; 2]) -> Self {
         let start = Start::Files(vec![ClipAddress { path, clip: None }]);
-        let harness = window_harness(size, start);
-        let mut desk = Self { harness, _folder: folder };
-        desk.run();
-        desk
-    }
-
-    fn run(&mut self) {
-        self.harness.run_steps(4);
-    }
-
-    fn window(&self) -> &Window {
-        self.harness.state().as_ref().expect("the window is made in the first frame")
-    }
-
-    fn ask(&mut self, command: Command) {
-        self.harness.state_mut().as_mut().expect("a window").ask(command);
-        self.run();
+        Self { bench: Bench::of_size(start, size), _folder: folder }
     }
 
     fn act(&mut self, action: CurveAction) {
         self.ask(Command::Do(Action::Curve(action)));
-    }
-
-    fn press(&mut self, modifiers: Modifiers, key: Key) {
-        self.harness.key_press_modifiers(modifiers, key);
-        self.run();
     }
 
     fn joint(&self, name: &str) -> usize {
@@ -145,15 +138,6 @@ impl Desk<'_> {
         self.track(name).at(secs).plane_angles().to_degrees()
     }
 
-    fn passes(&self) -> Vec<PassStep> {
-        let passes = &self.window().bench().work().unwrap().passes;
-        passes.iter().map(|pass| pass.step.clone()).collect()
-    }
-
-    fn steps(&self) -> usize {
-        self.window().bench().project.as_ref().unwrap().history.steps().1
-    }
-
     fn chosen(&self) -> usize {
         self.window().bench().session.curves.keys.len()
     }
@@ -162,12 +146,7 @@ impl Desk<'_> {
     #[track_caller]
     fn pip(&self, joint: &str, secs: f64, line: &str) -> Pos2 {
         let label = format!("Key of {joint} at {}, {line}", seconds(secs));
-        self.harness.get_by_label(&label).rect().center()
-    }
-
-    fn hold(&mut self, modifiers: Modifiers) {
-        self.harness.event(Event::ModifiersChanged(modifiers));
-        self.harness.step();
+        self.bench.0.get_by_label(&label).rect().center()
     }
 
     /// A drag with stops on the way, so that it is seen while it lasts; `midway` looks at the window before it is let go.
@@ -175,18 +154,18 @@ impl Desk<'_> {
         self.hold(modifiers);
         let button =
             |pos, pressed| Event::PointerButton { pos, button: PointerButton::Primary, pressed, modifiers };
-        self.harness.hover_at(from);
-        self.harness.step();
-        self.harness.event(button(from, true));
-        self.harness.step();
+        self.bench.0.hover_at(from);
+        self.bench.0.step();
+        self.bench.0.event(button(from, true));
+        self.bench.0.step();
         for share in [0.25, 0.5, 1.0] {
-            self.harness.hover_at(from + by * share);
-            self.harness.step();
+            self.bench.0.hover_at(from + by * share);
+            self.bench.0.step();
         }
-        self.harness.run_steps(2);
+        self.bench.0.run_steps(2);
         midway(self);
-        self.harness.event(button(from + by, false));
-        self.harness.step();
+        self.bench.0.event(button(from + by, false));
+        self.bench.0.step();
         self.hold(Modifiers::NONE);
         self.run();
     }
@@ -279,7 +258,7 @@ fn keys_are_chosen_by_click_shift_box_lane_and_keyboard() {
     let choice = desk.window().bench().session.curves.keys.clone();
     assert_eq!(choice.times(desk.joint(ARM)), [0.5, 1.0]);
     // Along the lane below: all keys of a stretch of time.
-    let chart = desk.harness.get_by_label("Rotation curves chart").rect();
+    let chart = desk.bench.0.get_by_label("Rotation curves chart").rect();
     let lane = Pos2::new(to.x - 20.0, chart.bottom() - 6.0);
     desk.act(CurveAction::ChooseNone);
     desk.drag(lane, vec2(desk.scale().x * 0.7, 0.0), Modifiers::NONE, |_| {});
@@ -328,8 +307,8 @@ fn keys_are_copied_pasted_and_pasted_mirrored() {
     // The desktop's own event for pasting, as a real window sends it, with Shift held: the other side.
     desk.ask(Command::Scrub(0.5));
     desk.hold(Modifiers::COMMAND | Modifiers::SHIFT);
-    desk.harness.event(Event::Paste(String::new()));
-    desk.harness.step();
+    desk.bench.0.event(Event::Paste(String::new()));
+    desk.bench.0.step();
     desk.hold(Modifiers::NONE);
     desk.run();
     // A turn within plane yz, square to the way across, is its own mirror image.
@@ -371,7 +350,7 @@ fn keys_are_shifted_and_scaled_in_time_by_bracket_keyboard_and_number() {
     let mut keys = KeyChoice::default();
     keys.add(joint, [0.5, 1.0]);
     desk.ask(Command::Curve(CurveCommand::Choose(keys)));
-    let bracket = desk.harness.get_by_label_contains("Last chosen key").rect().center();
+    let bracket = desk.bench.0.get_by_label_contains("Last chosen key").rect().center();
     desk.drag(bracket, vec2(desk.scale().x * 0.3, 0.0), Modifiers::NONE, |_| {});
     assert_eq!(desk.times(ARM), [0.0, 0.5, 1.3, 1.5, 2.0]);
     desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::ArrowLeft);
@@ -381,9 +360,9 @@ fn keys_are_shifted_and_scaled_in_time_by_bracket_keyboard_and_number() {
     assert_near(desk.times(ARM)[1], 0.5 - 2.0 / 30.0, 1e-3);
     let steps = desk.steps();
     // Typed: a tenth of a second later.
-    desk.harness.get_by_label("Shift keys by").click();
+    desk.bench.0.get_by_label("Shift keys by").click();
     desk.run();
-    let field = desk.harness.get_by_label("Shift keys by");
+    let field = desk.bench.0.get_by_label("Shift keys by");
     field.type_text("0.1");
     desk.run();
     desk.press(Modifiers::NONE, Key::Enter);
@@ -396,10 +375,10 @@ fn the_numbers_of_a_key_are_typed() {
     let mut desk = Desk::new();
     desk.click_at(desk.pip(ARM, 1.0, "yz"), Modifiers::NONE);
     for (label, text) in [("Key zx", "12.5"), ("Key time", "1.1")] {
-        desk.harness.get_by_label(label).click();
+        desk.bench.0.get_by_label(label).click();
         desk.run();
         desk.press(Modifiers::COMMAND, Key::A);
-        desk.harness.get_by_label(label).type_text(text);
+        desk.bench.0.get_by_label(label).type_text(text);
         desk.run();
         desk.press(Modifiers::NONE, Key::Enter);
     }
@@ -413,7 +392,7 @@ fn the_numbers_of_a_key_are_typed() {
 #[test]
 fn several_joints_are_edited_at_once() {
     let mut desk = Desk::new();
-    let node = desk.harness.get_by_label("Map row RightArm");
+    let node = desk.bench.0.get_by_label("Map row RightArm");
     node.click_modifiers(Modifiers::SHIFT);
     desk.run();
     let (left, right) = (desk.joint(ARM), desk.joint("RightArm"));
@@ -429,7 +408,7 @@ fn several_joints_are_edited_at_once() {
     assert_near(desk.degrees(ARM, 0.5)[0], 35.0, 0.4);
     assert_near(desk.degrees("RightArm", 0.5)[0], 15.0, 0.4);
     // A plain click chooses one alone again.
-    desk.harness.get_by_label("Map row RightArm").click();
+    desk.bench.0.get_by_label("Map row RightArm").click();
     desk.run();
     assert_eq!(desk.window().bench().session.joints(), [right]);
     desk.press(Modifiers::COMMAND | Modifiers::SHIFT, Key::ArrowUp);
@@ -468,19 +447,19 @@ fn a_segment_gets_path_spacing_and_turns() {
         desk.press(Modifiers::ALT | Modifiers::SHIFT, key);
         assert_eq!(segment(&desk).1, spacing);
     }
-    desk.harness.get_by_label("One turn more").click();
+    desk.bench.0.get_by_label("One turn more").click();
     desk.run();
     assert_eq!(segment(&desk).2, 1);
     // 380° in half a second; the bar says so.
     assert_near(desk.track(ARM).highest_rate(1).rate_rad.to_degrees(), 760.0, 0.1);
-    desk.harness.get_by_label_contains("at most 760°/s");
-    desk.harness.get_by_label("Go the other way round").click();
+    desk.bench.0.get_by_label_contains("at most 760°/s");
+    desk.bench.0.get_by_label("Go the other way round").click();
     desk.run();
     assert_eq!(segment(&desk).2, -2, "as many whole turns and one, less the short way, the other way");
     assert_near(desk.track(ARM).highest_rate(1).rate_rad.to_degrees(), 2.0 * 700.0, 0.1);
-    desk.harness.get_by_label("Go the other way round").click();
+    desk.bench.0.get_by_label("Go the other way round").click();
     desk.run();
-    desk.harness.get_by_label("One turn less").click();
+    desk.bench.0.get_by_label("One turn less").click();
     desk.run();
     assert_eq!(segment(&desk).2, 0);
 }
@@ -491,7 +470,7 @@ fn own_handles_of_a_spacing_are_dragged_and_moved_by_arrows() {
     desk.ask(Command::Scrub(0.7));
     desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::Insert);
     let steps = desk.steps();
-    let handle = desk.harness.get_by_label_contains("Spacing handle 1").rect().center();
+    let handle = desk.bench.0.get_by_label_contains("Spacing handle 1").rect().center();
     desk.drag(handle, vec2(25.0, 12.0), Modifiers::NONE, |desk| assert_eq!(desk.steps(), steps));
     assert_eq!(desk.steps(), steps + 1);
     let spacing = |desk: &Desk<'_>| desk.track(ARM).segments.of(1).spacing;
@@ -501,7 +480,7 @@ fn own_handles_of_a_spacing_are_dragged_and_moved_by_arrows() {
     let (start, end) = (desk.track(ARM).at(0.5), desk.track(ARM).at(1.0));
     let early = desk.track(ARM).at(0.6);
     assert!(start.turn_to(early) < 0.2 * start.turn_to(end) && start.turn_to(early) > 0.0);
-    desk.harness.get_by_label_contains("Spacing handle 2").focus();
+    desk.bench.0.get_by_label_contains("Spacing handle 2").focus();
     desk.run();
     desk.press(Modifiers::NONE, Key::ArrowDown);
     let Spacing::Own(moved) = spacing(&desk) else { panic!("{:?}", spacing(&desk)) };
@@ -517,7 +496,7 @@ fn a_captured_curve_is_pushed_softly_and_the_source_stays() {
     let window = TimeWindow { start_secs: 0.0, end_secs: 2.0 };
     desk.ask(Command::ShowTime(window));
     desk.ask(Command::Curve(CurveCommand::ShowValues(Some([-40.0, 40.0]))));
-    let chart = desk.harness.get_by_label("Rotation curves chart").rect();
+    let chart = desk.bench.0.get_by_label("Rotation curves chart").rect();
     let set = desk.window().bench().curve_sets()[0].clone();
     // The plot: left the gutter, below the lane and a little air.
     let (left, right, top, bottom) =
@@ -557,7 +536,7 @@ fn a_range_is_smoothed_and_reduced_as_passes_on_the_chosen_joints() {
     let joint = desk.joint("Trunk");
     desk.ask(Command::SetLoopRange(Some((0.5, 1.5))));
     desk.press(Modifiers::ALT, Key::S);
-    desk.harness.get_by_label("Reduce keys of range").click();
+    desk.bench.0.get_by_label("Reduce keys of range").click();
     desk.run();
     let passes = desk.passes();
     let [PassStep::Smooth(smooth), PassStep::Reduce(reduce)] = passes.as_slice() else {
@@ -616,7 +595,7 @@ fn values_are_zoomed_moved_and_fitted() {
     assert!(values(&desk).unwrap()[0] > low);
     desk.press(Modifiers::ALT, Key::V);
     assert_eq!(values(&desk), None);
-    let chart = desk.harness.get_by_label("Rotation curves chart").rect();
+    let chart = desk.bench.0.get_by_label("Rotation curves chart").rect();
     desk.drag(chart.left_center() + vec2(60.0, 0.0), vec2(0.0, 20.0), Modifiers::NONE, |_| {});
     assert!(values(&desk).unwrap()[1] > 42.4, "{:?}", values(&desk));
 }
@@ -646,7 +625,174 @@ fn keys_of_a_file_with_rows_stay_rows_and_can_be_edited_again() {
     assert_eq!(desk.passes().len(), 2);
     let turned = before.turn_to(desk.track(&name).at(grid.time(105))).to_degrees();
     assert!(turned > 0.2, "turned by {turned}°");
-    assert!(desk.harness.get_by_label("Rotation curves chart").accesskit_node().label().is_some());
+    assert!(desk.bench.0.get_by_label("Rotation curves chart").accesskit_node().label().is_some());
+}
+
+#[test]
+fn the_four_views_show_what_they_say() {
+    let mut desk = Desk::new();
+    let shown = |desk: &Desk<'_>, secs: f64| {
+        let set = desk.window().bench().curve_sets()[0].clone();
+        (
+            set.view,
+            set.shown_at(secs).unwrap(),
+            set.lines.iter().map(|line| line.name.clone()).collect::<Vec<_>>(),
+        )
+    };
+    desk.press(Modifiers::ALT, Key::Num2);
+    let (view, [swing, twist, _], _) = shown(&desk, 1.0);
+    // The arm points along x, and turns in plane yz.
+    assert_eq!(view, CurveView::SwingTwist);
+    assert!(swing.abs() < 1e-3 && (twist - 40.0).abs() < 1e-3, "{swing} {twist}");
+    desk.press(Modifiers::ALT, Key::Num3);
+    let (view, [s, yz, _], names) = shown(&desk, 1.0);
+    assert_eq!((view, names.join(" ").as_str()), (CurveView::FileNumbers, "s yz zx xy"));
+    let half = 20.0_f64.to_radians();
+    assert!((s - half.cos()).abs() < 1e-6 && (yz.abs() - half.sin()).abs() < 1e-6, "{s} {yz}");
+    desk.press(Modifiers::ALT, Key::Num4);
+    let (view, [rate, ..], _) = shown(&desk, 0.25);
+    assert_eq!(view, CurveView::TurnRate);
+    assert_near(rate, 40.0, 0.1);
+    desk.press(Modifiers::ALT, Key::Num1);
+    let (view, [yz, zx, xy], names) = shown(&desk, 1.0);
+    assert_eq!((view, names.join(" ").as_str()), (CurveView::PlaneAngles, "yz zx xy"));
+    assert!((yz - 40.0).abs() < 1e-3 && zx.abs() < 1e-3 && xy.abs() < 1e-3);
+}
+
+/// The choice of all keys of a joint between two times.
+fn keys_between(desk: &Desk<'_>, name: &str, from: f64, to: f64) -> KeyChoice {
+    let mut keys = KeyChoice::default();
+    let within = |secs: &f64| (from - 1e-6..=to + 1e-6).contains(secs);
+    keys.add(desk.joint(name), desk.track(name).times.iter().filter(within).collect::<Vec<f64>>());
+    keys
+}
+
+#[test]
+fn a_stretch_of_captured_keys_gets_a_path_and_a_spacing() {
+    let mut desk = Desk::new();
+    desk.choose("Trunk");
+    let before = desk.track("Trunk");
+    // Between two frames there is nothing to shape: it is said, and nothing is done.
+    desk.ask(Command::Scrub(1.0));
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::Q);
+    assert_eq!(desk.steps(), 0);
+    let told = desk.window().messages().collect::<Vec<_>>().join(" ");
+    assert!(told.contains("choose a stretch of keys first"), "{told}");
+
+    let keys = keys_between(&desk, "Trunk", 0.5, 1.5);
+    assert_eq!(keys.len(), 31);
+    desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::S);
+    assert_eq!((desk.steps(), desk.times("Trunk").len()), (1, 61 - 29));
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::U);
+    assert_eq!((desk.steps(), desk.passes().len()), (2, 1));
+    // The bar has gone over to the segment that is left, whose handles can be dragged.
+    assert_eq!(
+        desk.window().bench().session.curves.segment.map(|(joint, _)| joint),
+        Some(desk.joint("Trunk"))
+    );
+    desk.bench.0.get_by_label("Path of the segment");
+    desk.bench.0.get_by_label_contains("Spacing handle 1");
+    let after = desk.track("Trunk");
+    let (from, to) = (before.at(0.5), before.at(1.5));
+    for share in [0.1, 0.25, 0.5, 0.8] {
+        let expected = turnwright::rotor::slerp(from, to, Spacing::EaseBoth.pace(share).share);
+        assert!(after.at(0.5 + share).turn_to(expected) < 1e-6, "at {share} of the stretch");
+    }
+    for secs in [0.0, 0.3, 0.5, 1.5, 1.8] {
+        assert!(after.at(secs).turn_to(before.at(secs)) < 1e-9, "beside the stretch at {secs}");
+    }
+    desk.press(Modifiers::COMMAND, Key::Z);
+    desk.press(Modifiers::COMMAND, Key::Z);
+    assert!(desk.passes().is_empty());
+}
+
+#[test]
+fn a_stretch_of_rows_is_shaped_on_in_its_own_pass() {
+    let Some(path) = shared("data/bvh/cmu_02_01_walk.bvh") else { return };
+    let mut desk = Desk::open(path, tempfile::tempdir().unwrap());
+    desk.choose("LeftArm");
+    let before = desk.track("LeftArm");
+    let grid = desk.window().bench().source().unwrap().grid.clone();
+    let (from, to) = (grid.time(100), grid.time(140));
+    let keys = keys_between(&desk, "LeftArm", from, to);
+    desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+    desk.bench.0.get_by_label("Path between the chosen keys").click();
+    desk.run();
+    desk.bench.0.get_by_label("slerp").click();
+    desk.run();
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::I);
+    let check = |desk: &Desk<'_>, spacing: Spacing| {
+        let after = desk.track("LeftArm");
+        assert_eq!(after.times.len(), before.times.len(), "rows stay");
+        for frame in 100..=140 {
+            let share = spacing.pace((frame - 100) as f64 / 40.0).share;
+            let expected = turnwright::rotor::slerp(before.at(from), before.at(to), share);
+            let off = after.at(grid.time(frame)).turn_to(expected).to_degrees();
+            assert!(off < 1e-3, "frame {frame} is {off}° off");
+        }
+    };
+    check(&desk, Spacing::EaseIn);
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::O);
+    check(&desk, Spacing::EaseOut);
+    assert_eq!((desk.steps(), desk.passes().len()), (3, 1), "{:?}", desk.passes());
+    // Turns are counted on from those that the stretch has.
+    for _ in 0..2 {
+        desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::Period);
+    }
+    let passes = desk.passes();
+    let [PassStep::Keys(pass)] = passes.as_slice() else { panic!("{passes:?}") };
+    let turns = pass.edits.iter().filter_map(|edit| match &edit.change {
+        turnwright::clip::KeyChange::Turn(_, turn) => Some(turn.whole()),
+        _ => None,
+    });
+    assert_eq!(turns.last(), Some(2));
+    let changed = desk.track("LeftArm").changed_keys(&before);
+    assert!(changed.iter().all(|key| (101..140).contains(key)), "{changed:?}");
+}
+
+#[test]
+fn limits_shade_what_a_number_may_not_reach_while_the_others_stay() {
+    let mut desk = Desk::new();
+    let joint = desk.joint(ARM);
+    let range =
+        Range { swing: SwingLimit::Cone { half_rad: 0.5 }, twist: Interval::from_degrees(-30.0, 25.0) };
+    let limit = JointLimit::new(Rotor::IDENTITY, DVec3::X, DVec3::Z, range);
+    let limits = Limits { title: "test".to_owned(), joints: [(joint, limit)].into() };
+    let plain = desk.bench.0.render().unwrap();
+    desk.ask(Command::Edit(Edit::SetLimits { work: 0, limits: Some(Arc::new(limits)) }));
+    assert!(desk.bench.0.render().unwrap() != plain, "the bands are drawn");
+    let room = |desk: &Desk<'_>, line: usize| {
+        let bench = desk.window().bench();
+        limit_room(&RoomKey {
+            set: bench.curve_sets()[0].clone(),
+            clip: bench.result().unwrap().clone(),
+            limit,
+            line,
+            window: TimeWindow { start_secs: 0.0, end_secs: 2.0 },
+            columns: 5,
+        })
+    };
+    let check = |found: Option<[f64; 2]>, expected: [f64; 2]| {
+        let found = found.expect("some of its values are inside");
+        assert!(
+            found.iter().zip(expected).all(|(a, b)| (a - b).abs() < 0.06),
+            "{found:?}, expected {expected:?}"
+        );
+    };
+    // The arm points along x: what it turns in yz alone is twist, and what it turns in zx alone is swing.
+    for column in 0..5 {
+        check(room(&desk, 0)[column], [-30.0, 25.0]);
+    }
+    let half = 0.5_f64.to_degrees();
+    for line in [1, 2] {
+        check(room(&desk, line)[0], [-half, half]);
+    }
+    // In numbers that mean no angle, and in rates, there is no band to draw.
+    for view in [Action::FileNumbers, Action::TurnRate] {
+        desk.ask(Command::Do(view));
+        assert!(room(&desk, 0).is_empty());
+    }
 }
 
 /// Pictures of the editor at work for people to look at, under `target/tmp/curves`: what is chosen and what is pushed is to be seen.
@@ -656,7 +802,7 @@ fn what_is_chosen_and_what_is_pushed_is_to_be_seen() {
     std::fs::create_dir_all(&folder).unwrap();
     let shoot = |desk: &mut Desk<'_>, name: &str| {
         desk.run();
-        let image = desk.harness.render().unwrap();
+        let image = desk.bench.0.render().unwrap();
         image.save(folder.join(name)).unwrap();
         image
     };
@@ -691,7 +837,8 @@ fn what_is_chosen_and_what_is_pushed_is_to_be_seen() {
             } else {
                 desk.choose(ARM);
                 let plain = shoot(&mut desk, &format!("{kind}_plain.png"));
-                desk.ask(Command::ChooseAlso(desk.joint("RightArm")));
+                let right = desk.joint("RightArm");
+                desk.ask(Command::ChooseAlso(right));
                 desk.act(CurveAction::ChooseAll);
                 let chosen = shoot(&mut desk, &format!("{kind}_chosen.png"));
                 assert_ne!(plain, chosen);

@@ -1,13 +1,12 @@
 //! The skeleton view driven by pointer and keyboard; what is asserted is the document and the turns it gives.
 
 use egui::{Key, Modifiers, Pos2, vec2};
-use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
 use glam::{DVec2, DVec3};
+use turnwright::app::Start;
 use turnwright::app::commands::{Action, Command, SpaceAction, SpaceCommand};
 use turnwright::app::session::{Disc, TurnPlanes};
 use turnwright::app::view_models::Stage;
-use turnwright::app::{Start, Window};
 use turnwright::clip::{Clip, PushFrame};
 use turnwright::exchange::ClipAddress;
 use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
@@ -15,41 +14,15 @@ use turnwright::raster::View;
 use turnwright::rotor::Rotor;
 use turnwright::scene::{Edit, PassStep};
 
-use crate::gui_harness::window_harness;
-
-struct Bench<'a>(Harness<'a, Option<Window>>);
+use crate::gui_harness::Bench;
 
 impl Bench<'_> {
-    fn open(start: Start) -> Self {
-        let harness = window_harness([1440.0, 900.0], start);
-        let mut bench = Self(harness);
-        bench.run();
-        bench
-    }
-
-    fn run(&mut self) {
-        self.0.run_steps(4);
-    }
-
-    fn window(&self) -> &Window {
-        self.0.state().as_ref().expect("the window is made in the first frame")
-    }
-
-    fn ask(&mut self, command: Command) {
-        self.0.state_mut().as_mut().expect("a window").ask(command);
-        self.run();
-    }
-
-    fn act(&mut self, action: SpaceAction) {
-        self.ask(Command::Do(Action::Space(action)));
+    fn space(&mut self, action: SpaceAction) {
+        self.act(Action::Space(action));
     }
 
     fn result(&self) -> Clip {
         Clip::clone(self.window().bench().result().expect("a clip"))
-    }
-
-    fn steps(&self) -> usize {
-        self.window().bench().project.as_ref().expect("a document").history.steps().1
     }
 
     fn undo_label(&self) -> String {
@@ -66,34 +39,8 @@ impl Bench<'_> {
         pushes.flatten().collect()
     }
 
-    /// Holds these keys from now on.
-    fn hold(&mut self, modifiers: Modifiers) {
-        self.0.event(egui::Event::ModifiersChanged(modifiers));
-        self.0.step();
-    }
-
     fn middle_of(&self, label: &str) -> Pos2 {
         self.0.get_by_label(label).rect().center()
-    }
-
-    /// Presses at the first place, goes through all others, and lets go at the last.
-    fn drag(&mut self, way: &[Pos2]) {
-        self.press_and_move(way);
-        self.0.drop_at(way[way.len() - 1]);
-        self.run();
-    }
-
-    fn press_and_move(&mut self, way: &[Pos2]) {
-        self.0.hover_at(way[0]);
-        self.0.step();
-        self.0.drag_at(way[0]);
-        self.0.step();
-        for &at in &way[1..] {
-            self.0.hover_at(at);
-            self.0.step();
-        }
-        // What is dragged shows one frame later.
-        self.0.step();
     }
 
     /// Chooses a joint and looks squarely and in parallel at plane xy, with discs in the scene's planes.
@@ -102,8 +49,8 @@ impl Bench<'_> {
         self.ask(Command::ChooseJoint(Some(joint)));
         self.ask(Command::Do(Action::Parallel));
         self.ask(Command::Do(Action::LookXy));
-        self.act(SpaceAction::FitJoint);
-        self.act(SpaceAction::Planes(TurnPlanes::World));
+        self.space(SpaceAction::FitJoint);
+        self.space(SpaceAction::Planes(TurnPlanes::World));
     }
 
     /// Middle and radius of the plane discs in the window: seen squarely, the grip of disc xy lies at 45° and that of the free disc
@@ -208,7 +155,7 @@ fn a_rim_is_as_good_as_its_grip_and_the_other_way_round_is_negative() {
     // At 160° no grip is near.
     let way = arc(bench.disc_in_window(), 160.0, 110.0);
     let camera = bench.window().bench().session.camera;
-    bench.drag(&way);
+    bench.drag(&way, Modifiers::NONE);
     check_angles(turned(&before, &bench.result(), joint, secs), [0.0, 0.0, -50.0], 0.3);
     assert_eq!(bench.window().bench().session.camera, camera, "the view stays");
 }
@@ -292,7 +239,7 @@ fn a_tip_is_drawn_to_where_the_pointer_lets_go_and_the_limb_keeps_its_plane() {
     };
     assert!(in_window(places(&before)[2]).distance(from) < 0.6, "the grip is at the wrist");
     let to = from + (in_window(places(&before)[0]) - from) * 0.3;
-    bench.drag(&[from, from + (to - from) * 0.5, to]);
+    bench.drag(&[from, from + (to - from) * 0.5, to], Modifiers::NONE);
     let after = bench.result();
     assert!(in_window(places(&after)[2]).distance(to) < 1.0, "{:?} {to:?}", in_window(places(&after)[2]));
     assert_eq!(bench.steps(), 1);
@@ -325,9 +272,9 @@ fn where_keys_are_sparse_a_turn_sets_a_key_at_the_playhead() {
     bench.look_at(joint, secs);
     let secs = bench.window().bench().session.playback.playhead_secs;
     let before = bench.result();
-    bench.act(SpaceAction::Arm(Disc::Xy));
+    bench.space(SpaceAction::Arm(Disc::Xy));
     for _ in 0..2 {
-        bench.act(SpaceAction::TurnOn);
+        bench.space(SpaceAction::TurnOn);
     }
     let after = bench.result();
     check_angles(turned(&before, &after, joint, secs), [0.0, 0.0, 10.0], 1e-6);
@@ -343,7 +290,7 @@ fn where_keys_are_sparse_a_turn_sets_a_key_at_the_playhead() {
 #[test]
 fn a_click_chooses_the_nearest_limb_and_with_alt_the_one_behind_it() {
     let (mut bench, _) = deckhand();
-    bench.act(SpaceAction::Discs);
+    bench.space(SpaceAction::Discs);
     bench.ask(Command::Do(Action::LookYz));
     bench.ask(Command::Do(Action::Fit));
     let clip = bench.result();
@@ -423,7 +370,7 @@ fn the_view_is_set_by_menu_and_keys_and_stays_with_the_next_clip() {
     assert!(session.camera.is_mirrored && session.space.shows_neighbours && session.space.shows_names);
     assert!(!session.space.shows_floor && !session.space.shows_discs && !session.space.shows_path);
     assert!(bench.0.query_by_label("Turn disc xy").is_none());
-    bench.act(SpaceAction::LongerFalloff);
+    bench.space(SpaceAction::LongerFalloff);
     let falloff = bench.window().bench().session.falloff_secs;
     let habits = bench.window().bench().session.space.clone();
     bench.ask(Command::Do(Action::OpenDemo));
@@ -433,11 +380,82 @@ fn the_view_is_set_by_menu_and_keys_and_stays_with_the_next_clip() {
 }
 
 #[test]
+fn discs_turn_in_the_planes_of_rest_and_parent_and_the_free_one_turns_freely() {
+    let (mut bench, joint) = deckhand();
+    let secs = bench.result().grid.time(40);
+    bench.look_at(joint, secs);
+    let rest = bench.result().skeleton.chosen_rest(joint).rotation;
+    for (key, frame) in [(Key::Num7, Rotor::IDENTITY), (Key::Num6, rest)] {
+        bench.0.key_press_modifiers(Modifiers::COMMAND | Modifiers::ALT, key);
+        bench.run();
+        let before = bench.result();
+        bench.space(SpaceAction::Arm(Disc::Zx));
+        bench.space(SpaceAction::TurnOn);
+        let local = |clip: &Clip| clip.local_at(secs)[joint].rotation;
+        let by = local(&bench.result()) * local(&before).reverse();
+        check_angles((frame.reverse() * by * frame).plane_angles().to_degrees(), [0.0, 5.0, 0.0], 1e-6);
+    }
+    let (before, steps) = (bench.result(), bench.steps());
+    let from = bench.middle_of("Turn disc free");
+    bench.drag(&[from, from + vec2(-20.0, 8.0), from + vec2(-40.0, 16.0)], Modifiers::NONE);
+    let by: f64 = turned(&before, &bench.result(), joint, secs).iter().map(|part| part * part).sum();
+    assert!(by.sqrt() > 5.0, "turned by {}°", by.sqrt());
+    assert_eq!(bench.steps(), steps + 1);
+}
+
+#[test]
+fn the_view_is_circled_moved_zoomed_and_set_straight() {
+    let (mut bench, _) = deckhand();
+    bench.ask(Command::ChooseJoint(None));
+    bench.ask(Command::Do(Action::Fit));
+    let camera = |bench: &Bench<'_>| bench.window().bench().session.camera;
+    let ground = bench.0.get_by_label("Skeleton view").rect().left_top() + vec2(30.0, 60.0);
+    let before = camera(&bench);
+    bench.drag(&[ground, ground + vec2(30.0, 0.0), ground + vec2(60.0, 20.0)], Modifiers::NONE);
+    let circled = camera(&bench);
+    assert!((circled.yaw_rad - before.yaw_rad).abs() > 0.1 && circled.pitch_rad > before.pitch_rad);
+    assert_eq!((circled.target, circled.distance), (before.target, before.distance));
+    bench.drag(&[ground, ground + vec2(30.0, 0.0), ground + vec2(60.0, 20.0)], Modifiers::SHIFT);
+    let moved = camera(&bench);
+    assert!(moved.target.distance(circled.target) > 0.01 * moved.distance);
+    assert_eq!((moved.yaw_rad, moved.pitch_rad), (circled.yaw_rad, circled.pitch_rad));
+    bench.0.hover_at(ground);
+    bench.0.event(egui::Event::MouseWheel {
+        unit: egui::MouseWheelUnit::Point,
+        delta: vec2(0.0, 60.0),
+        phase: egui::TouchPhase::Move,
+        source: egui::MouseWheelSource::Wheel,
+        modifiers: Modifiers::NONE,
+    });
+    bench.0.run_steps(20);
+    assert!(camera(&bench).distance < 0.9 * moved.distance, "{} {}", camera(&bench).distance, moved.distance);
+    // Ctrl+1 to 6: from +z, +y, +x and from behind.
+    for (key, from) in [
+        (Key::Num1, DVec3::Z),
+        (Key::Num2, DVec3::Y),
+        (Key::Num3, DVec3::X),
+        (Key::Num4, DVec3::NEG_Z),
+        (Key::Num5, DVec3::NEG_Y),
+        (Key::Num6, DVec3::NEG_X),
+    ] {
+        bench.0.key_press_modifiers(Modifiers::COMMAND, key);
+        bench.run();
+        let own = camera(&bench);
+        let (sin, cos) = (own.yaw_rad.sin(), own.yaw_rad.cos());
+        let at = DVec3::new(sin * own.pitch_rad.cos(), own.pitch_rad.sin(), cos * own.pitch_rad.cos());
+        assert!(at.distance(from) < 1e-9, "{} looks from {at}", key.name());
+    }
+    bench.0.key_press_modifiers(Modifiers::COMMAND, Key::Num9);
+    bench.run();
+    assert_eq!(camera(&bench).lens, turnwright::raster::Lens::Orthographic);
+}
+
+#[test]
 fn in_a_mirrored_view_a_drag_goes_the_other_way_round() {
     let (mut bench, joint) = deckhand();
     let secs = bench.result().grid.time(40);
     bench.look_at(joint, secs);
-    bench.act(SpaceAction::Mirror);
+    bench.space(SpaceAction::Mirror);
     let before = bench.result();
     // The grip of disc xy now lies at 135°; a way counter-clockwise on the screen is clockwise in the scene.
     let grip = bench.middle_of("Turn disc xy");
@@ -446,7 +464,7 @@ fn in_a_mirrored_view_a_drag_goes_the_other_way_round() {
     let middle = corner + vec2(center.x as f32, center.y as f32);
     let radius = grip.distance(middle);
     assert!(grip.x < middle.x && grip.y < middle.y);
-    bench.drag(&arc((middle, radius), 135.0, 155.0));
+    bench.drag(&arc((middle, radius), 135.0, 155.0), Modifiers::NONE);
     check_angles(turned(&before, &bench.result(), joint, secs), [0.0, 0.0, -20.0], 0.5);
 }
 

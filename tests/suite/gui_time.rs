@@ -2,86 +2,26 @@
 
 use std::path::Path;
 
-use egui::{Event, Modifiers, Pos2};
-use egui_kittest::Harness;
+use egui::{Event, Modifiers};
 use egui_kittest::kittest::Queryable as _;
+use turnwright::app::Start;
 use turnwright::app::commands::{Action, Command, Offer, TimeCommand};
 use turnwright::app::view_models::{HeatKind, SnagFilter, TimeChoice, snag_rows, snag_states};
-use turnwright::app::{Start, Window};
 use turnwright::exchange::ClipAddress;
 use turnwright::scene::{ClipWork, PassStep, SmoothPass};
 use turnwright::snag::SnagKind;
 
 use crate::support;
 
-use crate::gui_harness::window_harness;
-
-struct Bench<'a>(Harness<'a, Option<Window>>);
+use crate::gui_harness::Bench;
 
 impl Bench<'_> {
-    fn open(start: Start) -> Self {
-        Self::of_size(start, [1440.0, 1700.0], false)
-    }
-
-    fn of_size(start: Start, size: [f32; 2], is_light: bool) -> Self {
-        let harness = window_harness(size, start);
-        let mut bench = Self(harness);
-        bench.run();
-        if is_light {
-            bench.act(Action::Light);
-        }
-        bench
-    }
-
-    fn run(&mut self) {
-        self.0.run_steps(4);
-    }
-
-    fn window(&self) -> &Window {
-        self.0.state().as_ref().expect("the window is made in the first frame")
-    }
-
     fn work(&self) -> &ClipWork {
         self.window().bench().work().expect("a clip")
     }
 
     fn choice(&self) -> &TimeChoice {
         &self.window().bench().session.choice
-    }
-
-    fn ask(&mut self, command: Command) {
-        self.0.state_mut().as_mut().expect("a window").ask(command);
-        self.run();
-    }
-
-    fn act(&mut self, action: Action) {
-        self.ask(Command::Do(action));
-    }
-
-    #[track_caller]
-    fn click(&mut self, label: &str) {
-        self.0.get_by_label(label).click();
-        self.run();
-    }
-
-    fn drag(&mut self, from: Pos2, to: Pos2, modifiers: Modifiers) {
-        self.0.event(Event::ModifiersChanged(modifiers));
-        self.0.hover_at(from);
-        self.0.step();
-        self.0.drag_at(from);
-        self.0.step();
-        for share in [0.5, 1.0] {
-            self.0.hover_at(from.lerp(to, share));
-            self.0.step();
-        }
-        self.0.drop_at(to);
-        self.0.step();
-        self.0.event(Event::ModifiersChanged(Modifiers::NONE));
-        self.run();
-    }
-
-    fn steps(&self) -> usize {
-        self.window().bench().project.as_ref().expect("a project").history.steps().1
     }
 
     fn titles(&self) -> Vec<String> {
@@ -97,17 +37,22 @@ impl Bench<'_> {
     }
 }
 
+/// A window so high that all lists have room.
+fn tall(start: Start) -> Bench<'static> {
+    Bench::of_size(start, [1440.0, 1700.0])
+}
+
 fn of_file(path: &Path) -> Start {
     Start::Files(vec![ClipAddress { path: path.to_owned(), clip: None }])
 }
 
 #[test]
 fn a_drag_over_the_map_chooses_where_a_new_pass_acts() {
-    let mut bench = Bench::open(Start::Demo);
+    let mut bench = tall(Start::Demo);
     let before = bench.window().bench().session.playback.playhead_secs;
     let rows = bench.0.get_by_label("Turn map rows").rect();
     let (from, to) = (rows.left_top() + egui::vec2(60.0, 24.0), rows.left_top() + egui::vec2(200.0, 56.0));
-    bench.drag(from, to, Modifiers::COMMAND);
+    bench.drag(&[from, to], Modifiers::COMMAND);
     let choice = bench.choice().clone();
     let joints = choice.joints.clone().expect("joints are chosen");
     let [first, last] = choice.span_secs.expect("a stretch is chosen");
@@ -135,7 +80,7 @@ fn a_drag_over_the_map_chooses_where_a_new_pass_acts() {
 
 #[test]
 fn the_choice_goes_by_keys_as_well_and_can_be_played_alone() {
-    let mut bench = Bench::open(Start::Demo);
+    let mut bench = tall(Start::Demo);
     bench.ask(Command::Scrub(0.5));
     bench.0.key_press_modifiers(Modifiers::ALT, egui::Key::OpenBracket);
     bench.run();
@@ -161,7 +106,7 @@ fn the_choice_goes_by_keys_as_well_and_can_be_played_alone() {
 
 #[test]
 fn new_passes_stand_in_their_order_and_a_dragged_number_is_one_step() {
-    let mut bench = Bench::open(Start::Demo);
+    let mut bench = tall(Start::Demo);
     for offer in [Offer::Reduce, Offer::Smooth, Offer::Resample] {
         bench.ask(Command::Time(TimeCommand::AddPass(offer)));
     }
@@ -197,7 +142,7 @@ fn new_passes_stand_in_their_order_and_a_dragged_number_is_one_step() {
 
 #[test]
 fn limbs_fold_to_one_row_and_open_again() {
-    let mut bench = Bench::open(Start::Demo);
+    let mut bench = tall(Start::Demo);
     let joints = bench.window().bench().source().unwrap().skeleton.listed().count();
     bench.act(Action::FoldLimbs);
     let folded = bench.window().bench().session.folded.clone();
@@ -214,7 +159,7 @@ fn limbs_fold_to_one_row_and_open_again() {
 
 #[test]
 fn a_mend_is_looked_at_before_it_is_accepted() {
-    let mut bench = Bench::open(Start::Demo);
+    let mut bench = tall(Start::Demo);
     let index = bench.window().bench().snags().iter().position(|snag| snag.kind == SnagKind::HalfTurn);
     let index = index.expect("the demo has a half turn");
     bench.ask(Command::ChooseSnag(index));
@@ -238,7 +183,7 @@ fn a_mend_is_looked_at_before_it_is_accepted() {
 #[test]
 fn what_is_looked_for_is_part_of_the_scene_and_looked_for_anew() {
     let Some(path) = support::shared("data/bvh/cmu_05_06_dance.bvh") else { return };
-    let mut bench = Bench::open(of_file(&path));
+    let mut bench = tall(of_file(&path));
     let usual = bench.window().bench().snags().len();
     bench.act(Action::IsLoop);
     assert!(bench.work().search.is_loop);
@@ -274,7 +219,7 @@ fn what_is_looked_for_is_part_of_the_scene_and_looked_for_anew() {
 
 #[test]
 fn markers_are_added_named_jumped_to_and_undone() {
-    let mut bench = Bench::open(Start::Demo);
+    let mut bench = tall(Start::Demo);
     for secs in [1.0, 0.4] {
         bench.ask(Command::Scrub(secs));
         bench.click("Add marker");
@@ -307,7 +252,7 @@ fn markers_are_added_named_jumped_to_and_undone() {
 
 #[test]
 fn the_list_of_snags_is_filtered_by_size() {
-    let mut bench = Bench::open(Start::Demo);
+    let mut bench = tall(Start::Demo);
     bench.ask(Command::SetFilter(SnagFilter { least_deg: 90, ..SnagFilter::default() }));
     let own = bench.window().bench();
     let (snags, session) = (own.snags(), &own.session);
@@ -322,4 +267,116 @@ fn the_list_of_snags_is_filtered_by_size() {
     assert_eq!(rows.len(), snags.len() - small);
     assert_eq!(bench.0.get_all_by_label_contains("Snag ").count(), rows.len());
     bench.0.get_by_label("Least size");
+}
+
+#[test]
+fn keys_that_come_in_one_frame_are_done_in_order_and_each_as_often() {
+    let mut bench = tall(Start::Demo);
+    let key =
+        |key, modifiers| Event::Key { key, physical_key: None, pressed: true, repeat: false, modifiers };
+    let right = || key(egui::Key::ArrowRight, Modifiers::NONE);
+    for event in [
+        right(),
+        right(),
+        key(egui::Key::OpenBracket, Modifiers::ALT),
+        right(),
+        right(),
+        right(),
+        key(egui::Key::CloseBracket, Modifiers::ALT),
+        right(),
+    ] {
+        bench.0.input_mut().events.push(event);
+    }
+    bench.run();
+    let grid = bench.window().bench().source().unwrap().grid.clone();
+    assert_eq!(bench.choice().span_secs.map(|span| span.map(|secs| grid.frame(secs))), Some([2, 5]));
+    assert_eq!(grid.frame(bench.window().bench().session.playback.playhead_secs), 6);
+}
+
+#[test]
+fn the_timeline_goes_by_keys_to_keys_snags_loops_and_speeds() {
+    let mut bench = tall(Start::Demo);
+    let frame = |bench: &Bench<'_>| {
+        let own = bench.window().bench();
+        own.result().unwrap().grid.frame(own.session.playback.playhead_secs)
+    };
+    // A capture has a key at each frame.
+    bench.press(Modifiers::COMMAND, egui::Key::ArrowRight);
+    bench.press(Modifiers::COMMAND, egui::Key::ArrowRight);
+    bench.press(Modifiers::COMMAND, egui::Key::ArrowLeft);
+    assert_eq!(frame(&bench), 1);
+    let chosen = |bench: &Bench<'_>| bench.window().bench().chosen_snag().cloned();
+    bench.press(Modifiers::NONE, egui::Key::F8);
+    let first = chosen(&bench).expect("a snag");
+    bench.press(Modifiers::NONE, egui::Key::F8);
+    let second = chosen(&bench).expect("a snag");
+    assert_ne!(first, second);
+    assert_eq!(frame(&bench), second.first_frame, "the playhead goes along");
+    bench.press(Modifiers::SHIFT, egui::Key::F8);
+    assert_eq!(chosen(&bench), Some(first));
+    for (start, key) in [(10, egui::Key::OpenBracket), (20, egui::Key::CloseBracket)] {
+        let secs = bench.window().bench().result().unwrap().grid.time(start);
+        bench.ask(Command::Scrub(secs));
+        bench.press(Modifiers::COMMAND, key);
+    }
+    let grid = bench.window().bench().result().unwrap().grid.clone();
+    let range = bench.window().bench().session.playback.range.expect("a loop");
+    assert_eq!((grid.frame(range.0), grid.frame(range.1)), (10, 20));
+    let speed = |bench: &Bench<'_>| bench.window().bench().session.playback.speed;
+    for _ in 0..9 {
+        bench.press(Modifiers::COMMAND, egui::Key::Comma);
+    }
+    assert_eq!(speed(&bench), 0.1);
+    for _ in 0..9 {
+        bench.press(Modifiers::COMMAND, egui::Key::Period);
+    }
+    assert_eq!(speed(&bench), 4.0);
+    bench.press(Modifiers::COMMAND, egui::Key::Backslash);
+    assert_eq!(bench.window().bench().session.playback.range, None);
+}
+
+#[test]
+fn the_map_is_ordered_by_its_worst_row_and_coloured_by_what_is_asked() {
+    let mut bench = tall(Start::Demo);
+    let row = |bench: &Bench<'_>, name: &str| bench.0.get_by_label(&format!("Map row {name}")).rect().top();
+    bench.press(Modifiers::ALT, egui::Key::Num7);
+    let source = bench.window().bench().source().unwrap().clone();
+    // The fastest turn from frame to frame, joint by joint, straight from the keys.
+    let fastest = |joint: usize| {
+        let at = |frame| source.rotation(joint).map(|track| track.at(source.grid.time(frame)));
+        let step = |frame: usize| Some(at(frame - 1)?.turn_to(at(frame)?));
+        (1..source.grid.count()).filter_map(step).fold(0.0, f64::max)
+    };
+    let worst = source.skeleton.listed().max_by(|&a, &b| fastest(a).total_cmp(&fastest(b))).unwrap();
+    let name = source.skeleton.label(worst).to_owned();
+    let rows = source.skeleton.listed().map(|joint| row(&bench, source.skeleton.label(joint)));
+    assert_eq!(row(&bench, &name), rows.fold(f32::INFINITY, f32::min), "{name} is on top");
+    let kind = |bench: &Bench<'_>| bench.window().bench().heat.as_ref().unwrap().value.kind;
+    for (key, expected) in [
+        (egui::Key::Num6, HeatKind::Change),
+        (egui::Key::Num8, HeatKind::LimitUse),
+        (egui::Key::Num5, HeatKind::TurnRate),
+    ] {
+        bench.press(Modifiers::ALT, key);
+        assert_eq!(kind(&bench), expected);
+    }
+}
+
+#[test]
+fn the_history_names_each_step_and_goes_to_any() {
+    let mut bench = tall(Start::Demo);
+    bench.act(Action::AddSmooth);
+    let title = bench.titles()[0].clone();
+    bench.click(&format!("Pass {title}"));
+    assert!(!bench.work().passes[0].on);
+    bench.click(&format!("Remove: {title}"));
+    assert!(bench.work().passes.is_empty());
+    bench.act(Action::History);
+    bench.0.get_by_label(&format!("Remove: {title}"));
+    bench.click(&format!("Switch off: {title}"));
+    assert!(!bench.work().passes[0].on);
+    bench.click(&format!("Add pass: {title}"));
+    assert!(bench.work().passes[0].on);
+    bench.click("Open");
+    assert_eq!((bench.work().passes.len(), bench.steps()), (0, 0));
 }

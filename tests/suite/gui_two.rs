@@ -3,76 +3,22 @@
 use std::path::PathBuf;
 
 use egui::{Key, Modifiers, Pos2};
-use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
+use turnwright::app::Start;
 use turnwright::app::commands::{Action, BlendCommand, Command};
 use turnwright::app::view_models::BlendKind;
-use turnwright::app::{Start, Window};
 use turnwright::blend::JoinPlace;
 use turnwright::exchange::ClipAddress;
 use turnwright::scene::{BlendForm, BlendPass, ClipRef, LoopPass, PassStep};
 
-use crate::gui_harness::window_harness;
+use crate::gui_harness::Bench;
 use crate::support::shared;
 
-struct Bench<'a>(Harness<'a, Option<Window>>);
-
 impl Bench<'_> {
-    fn open(path: PathBuf, clip: Option<&str>) -> Self {
-        let start = Start::Files(vec![ClipAddress { path, clip: clip.map(str::to_owned) }]);
-        let harness = window_harness([1440.0, 900.0], start);
-        let mut bench = Self(harness);
-        bench.run();
-        bench
-    }
-
-    fn run(&mut self) {
-        self.0.run_steps(5);
-    }
-
-    fn window(&self) -> &Window {
-        self.0.state().as_ref().expect("the window is made in the first frame")
-    }
-
-    fn ask(&mut self, command: Command) {
-        self.0.state_mut().as_mut().expect("a window").ask(command);
-        self.run();
-    }
-
-    #[track_caller]
-    fn click(&mut self, label: &str) {
-        // What lies below in a list comes into view first.
-        self.0.get_by_label(label).scroll_to_me();
-        self.run();
-        self.0.get_by_label(label).click();
-        self.run();
-    }
-
     #[track_caller]
     fn place(&self, beginning: &str) -> Pos2 {
         let node = self.0.get_all_by_label_contains(beginning).next().expect("a widget with that label");
         node.rect().center()
-    }
-
-    fn drag(&mut self, from: Pos2, to: Pos2) -> usize {
-        self.0.hover_at(from);
-        self.0.step();
-        self.0.drag_at(from);
-        self.0.step();
-        let mut previews = 0;
-        for part in 1..=4 {
-            self.0.hover_at(from + (to - from) * part as f32 / 4.0);
-            self.0.step();
-            previews += usize::from(self.window().bench().preview.is_some());
-        }
-        self.0.drop_at(to);
-        self.run();
-        previews
-    }
-
-    fn passes(&self) -> Vec<PassStep> {
-        let work = self.window().bench().work().expect("a clip");
-        work.passes.iter().map(|pass| pass.step.clone()).collect()
     }
 
     #[track_caller]
@@ -91,22 +37,17 @@ impl Bench<'_> {
         }
     }
 
-    fn steps(&self) -> usize {
-        self.window().bench().project.as_ref().map_or(0, |project| project.history.steps().1)
-    }
-
-    fn undo(&mut self) {
-        self.0.key_press_modifiers(Modifiers::COMMAND, Key::Z);
-        self.run();
-    }
-
     fn length(&self) -> f64 {
         self.window().bench().result().map_or(0.0, |clip| clip.duration_secs)
     }
 }
 
+fn open(path: PathBuf, clip: Option<&str>) -> Bench<'static> {
+    Bench::open(Start::Files(vec![ClipAddress { path, clip: clip.map(str::to_owned) }]))
+}
+
 fn fox() -> Option<Bench<'static>> {
-    Some(Bench::open(shared("data/gltf/Fox.glb")?, Some("Walk")))
+    Some(open(shared("data/gltf/Fox.glb")?, Some("Walk")))
 }
 
 const RUN: ClipRef = ClipRef { source: 0, clip: 2 };
@@ -128,7 +69,7 @@ fn a_clip_is_joined_from_the_menu_and_its_place_is_dragged_and_clicked() {
 
     // The bar of the second clip: earlier by some points, in one step, shown on the way.
     let from = bench.place("Second clip begins at");
-    let previews = bench.drag(from, from - egui::vec2(60.0, 0.0));
+    let previews = bench.drag(&[from, from - egui::vec2(60.0, 0.0)], Modifiers::NONE);
     assert!(previews >= 2, "{previews} frames showed it while it was dragged");
     assert_eq!(bench.steps(), 2, "a drag is one step");
     assert!(bench.window().bench().preview.is_none());
@@ -173,7 +114,7 @@ fn a_weight_becomes_a_curve_and_its_knots_obey_pointer_and_keys() {
     };
     assert_eq!(weight(&bench), [[0.0, 0.5]]);
     let from = bench.place("Weight 50 %");
-    let previews = bench.drag(from, from + egui::vec2(30.0, -12.0));
+    let previews = bench.drag(&[from, from + egui::vec2(30.0, -12.0)], Modifiers::NONE);
     assert!(previews >= 2);
     let dragged = weight(&bench);
     assert!(dragged.len() == 1 && dragged[0][0] == 0.0 && dragged[0][1] < 0.45, "{dragged:?}");
@@ -187,7 +128,7 @@ fn a_weight_becomes_a_curve_and_its_knots_obey_pointer_and_keys() {
     assert_eq!(knots.len(), 3, "{knots:?}");
     assert!(knots.windows(2).all(|pair| pair[0][0] < pair[1][0]), "{knots:?}");
     let last = bench.place("Weight 3 of 3");
-    bench.drag(last, last + egui::vec2(0.0, 200.0));
+    bench.drag(&[last, last + egui::vec2(0.0, 200.0)], Modifiers::NONE);
     assert_eq!(weight(&bench)[2][1], 1.0, "held within its range");
     let steps = bench.steps();
     bench.0.get_all_by_label_contains("Weight 3 of 3").next().unwrap().focus();
@@ -243,7 +184,7 @@ fn a_second_clip_of_another_body_comes_from_a_file_and_is_carried_over() {
     else {
         return;
     };
-    let mut bench = Bench::open(walk, None);
+    let mut bench = open(walk, None);
     bench.ask(Command::Blend(BlendCommand::AskForFile(None)));
     bench.ask(Command::Blend(BlendCommand::OpenFile(biped.clone())));
     let document = bench.window().bench().project.as_ref().unwrap().document().clone();
@@ -268,7 +209,7 @@ fn a_second_clip_of_another_body_comes_from_a_file_and_is_carried_over() {
 #[test]
 fn a_loop_finds_its_part_and_is_repeated() {
     let Some(path) = shared("data/bvh/cmu_02_01_walk.bvh") else { return };
-    let mut bench = Bench::open(path, None);
+    let mut bench = open(path, None);
     let length = bench.length();
     bench.ask(Command::Do(Action::MakeLoop));
     let own = |bench: &Bench<'_>| match bench.passes().as_slice() {
@@ -304,4 +245,23 @@ fn the_lane_can_be_hidden_and_a_blend_that_does_not_fit_says_why() {
     bench.0.get_all_by_label_contains("Pass Join").next().unwrap().click();
     bench.run();
     bench.0.get_by_label("This blend is switched off");
+}
+
+#[test]
+fn the_lane_is_made_higher_by_its_divider() {
+    let Some(mut bench) = fox() else { return };
+    assert!(bench.0.query_by_label("Divider below blend lane").is_none());
+    bench.ask(Command::Blend(BlendCommand::Add(RUN, BlendKind::Mix)));
+    let line = |bench: &Bench<'_>| bench.0.get_by_label("Divider below blend lane").rect().center();
+    let curves = |bench: &Bench<'_>| bench.0.get_by_label("Rotation curves chart").rect().height();
+    let (from, height) = (line(&bench), curves(&bench));
+    bench.drag(&[from, from + egui::vec2(0.0, 30.0)], Modifiers::NONE);
+    assert!((line(&bench).y - from.y - 30.0).abs() < 2.0, "{from:?} {:?}", line(&bench));
+    assert!((height - curves(&bench) - 30.0).abs() < 2.0);
+    bench.0.get_by_label("Divider below blend lane").focus();
+    bench.run();
+    bench.0.key_press(Key::ArrowUp);
+    bench.run();
+    assert!((line(&bench).y - from.y - 14.0).abs() < 2.0, "{from:?} {:?}", line(&bench));
+    assert_eq!(bench.steps(), 1, "areas are no work on the clip");
 }
