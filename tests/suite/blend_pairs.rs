@@ -291,7 +291,7 @@ fn jolts(clip: &Clip, round: usize) -> [[f64; 2]; 2] {
     let (secs, worlds) = worlds(clip);
     let mut worst = [[0.0; 2]; 2];
     let mut put = |frame: usize, kind: usize, step: f64| {
-        let own: &mut f64 = &mut worst[kind][usize::from(frame % round != 0)];
+        let own: &mut f64 = &mut worst[kind][usize::from(!frame.is_multiple_of(round))];
         *own = own.max(step);
     };
     for joint in clip.skeleton.listed() {

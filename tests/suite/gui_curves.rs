@@ -742,11 +742,11 @@ fn a_stretch_of_rows_is_shaped_on_in_its_own_pass() {
     }
     let passes = desk.passes();
     let [PassStep::Keys(pass)] = passes.as_slice() else { panic!("{passes:?}") };
-    let turns = pass.edits.iter().filter_map(|edit| match &edit.change {
+    let mut turns = pass.edits.iter().filter_map(|edit| match &edit.change {
         turnwright::clip::KeyChange::Turn(_, turn) => Some(turn.whole()),
         _ => None,
     });
-    assert_eq!(turns.last(), Some(2));
+    assert_eq!(turns.next_back(), Some(2));
     let changed = desk.track("LeftArm").changed_keys(&before);
     assert!(changed.iter().all(|key| (101..140).contains(key)), "{changed:?}");
 }

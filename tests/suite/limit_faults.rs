@@ -257,7 +257,7 @@ fn table(files: &[&str], limits_of: LimitsOf<'_>, seed: u64) -> Option<Score> {
 fn set_by_hand(clip: &Clip) -> Limits {
     let times: Vec<f64> = clip.grid.times.iter().collect();
     let mut limits = learned(clip, &LearnOptions::default());
-    limits.title = "by hand".to_owned();
+    "by hand".clone_into(&mut limits.title);
     for (&joint, limit) in &mut limits.joints {
         let own = readings(clip.rotation(joint).unwrap(), &times, limit);
         let most = own.iter().map(|reading| reading.swing[0].hypot(reading.swing[1])).fold(0.0, f64::max);
