@@ -233,6 +233,10 @@ pub(super) struct RetargetArgs {
     /// preset adult
     #[arg(long, value_name = "FILE|adult")]
     pub(super) limits: Option<LimitsName>,
+    /// Bring joints within the limits of the clip's own joints, carried over by the joint map: those in a file, or without one those that a scene
+    /// has for the clip
+    #[arg(long, value_name = "FILE", num_args = 0..=1, conflicts_with = "limits")]
+    pub(super) carry_limits: Option<Vec<LimitsName>>,
     /// Take the clip's pose at this second for the source's rest pose
     #[arg(long, value_name = "S")]
     pub(super) rest_at: Option<f64>,

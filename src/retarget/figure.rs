@@ -44,6 +44,16 @@ impl Figure {
         Self { skeleton: skeleton.clone(), rest, roles, root }
     }
 
+    /// The same figure with another pose for its rest, its joints being what they are. `up` is where up is in that pose's scene; unit.
+    ///
+    /// # Panics
+    /// When `rest` has not one transform for each joint.
+    #[must_use]
+    pub fn posed(&self, rest: LocalPose, up: DVec3) -> Self {
+        let roles = self.roles.posed(&self.skeleton, &rest, up);
+        Self { skeleton: self.skeleton.clone(), rest, roles, root: self.root }
+    }
+
     /// The same figure with arms level and legs down: a T-pose. Only the joints of arms and legs turn.
     #[must_use]
     pub fn straightened(&self) -> Self {
@@ -77,7 +87,7 @@ impl Figure {
                 rest[joint].rotation = (above.reverse() * shape.rotations[joint]).normalize();
             }
         }
-        Self::below(&self.skeleton, rest, self.root)
+        self.posed(rest, self.roles.shape.up)
     }
 
     /// The turn from the axes (x left, y up, z forward) to the figure's own.

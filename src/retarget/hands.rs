@@ -8,6 +8,7 @@ use crate::skeleton::TwoJointLimb;
 use crate::skeleton::roles::{Role, Side};
 
 use super::figure::Figure;
+use super::keep::Goal;
 use super::options::{HandHold, HoldAt, frames_of};
 use super::plan::Plan;
 use super::report::{Missed, Report};
@@ -27,7 +28,7 @@ struct Hold {
     at: HoldAt,
 }
 
-/// Holds hands in the result by bending arms. First those held at places, then those held at each other.
+/// Holds hands in the result by bending arms. First those held at places, then those held at each other. What is held comes second.
 pub(super) fn hold_hands(
     clip: &Clip,
     [source, target]: [&Figure; 2],
@@ -35,7 +36,8 @@ pub(super) fn hold_hands(
     holds: &[HandHold],
     result: Clip,
     report: &mut Report,
-) -> Clip {
+) -> (Clip, Vec<Goal>) {
+    let mut goals = Vec::new();
     let holds = fitting(clip, [source, target], holds, report);
     let mut result = result;
     for side in Side::BOTH {
@@ -56,15 +58,16 @@ pub(super) fn hold_hands(
         result = held(&result, &arm, &places, report);
         let what = format!("the {} arm does not reach the place where the hand is held", side.name());
         tell_misses(&result, &arm, &places, own().map(|hold| hold.frames), &what, report);
+        goals.push(goal(&result, &arm, places, own().map(|hold| hold.frames).collect()));
     }
     let pairs: Vec<(usize, usize)> =
         holds.iter().filter(|hold| hold.at == HoldAt::OtherHand).map(|hold| hold.frames).collect();
     let arms = [arm(target, Side::Left), arm(target, Side::Right)];
-    let sources = [Side::Left, Side::Right].map(|side| source.roles.joint(Role::Hand(side)));
+    let sources = [Side::Left, Side::Right].map(|side| palm(source, side));
     if let ([Some(left), Some(right)], [Some(own_left), Some(own_right)]) = (arms, sources)
         && !pairs.is_empty()
     {
-        let from = Trails::of(clip, &[JointPoint::of(own_left), JointPoint::of(own_right)]).rows;
+        let from = Trails::of(clip, &[own_left, own_right]).rows;
         let rows = [trail(&result, &left), trail(&result, &right)];
         let count = rows[0].len();
         let mut places = [vec![None; count], vec![None; count]];
@@ -94,8 +97,30 @@ pub(super) fn hold_hands(
             let what = "the arm does not reach the other hand";
             tell_misses(&result, arm, places, pairs.iter().copied(), what, report);
         }
+        for (arm, places) in [left, right].iter().zip(places) {
+            goals.push(goal(&result, arm, places, pairs.clone()));
+        }
     }
-    result
+    (result, goals)
+}
+
+/// What is left to hold once limits move the arm: the place to which the hand came.
+fn goal(clip: &Clip, arm: &Arm, places: Vec<Option<DVec3>>, spans: Vec<(usize, usize)>) -> Goal {
+    let come = trail(clip, arm);
+    let places = places.into_iter().zip(come).map(|(place, come)| place.map(|_| come)).collect();
+    Goal {
+        limb: arm.limb,
+        points: vec![(arm.palm, places)],
+        spans,
+        size: length(clip, arm),
+        is_foot: false,
+        what: "limits pull the hand off the place where it is held",
+    }
+}
+
+fn length(clip: &Clip, arm: &Arm) -> f64 {
+    let [root, middle, end] = arm.limb.points(&clip.skeleton, &clip.local_at(clip.grid.time(0)));
+    root.distance(middle) + middle.distance(end)
 }
 
 /// The holds whose frames and joints are there; the others are told.
@@ -132,29 +157,48 @@ fn fitting(clip: &Clip, figures: [&Figure; 2], holds: &[HandHold], report: &mut 
     fitting
 }
 
-fn arm(figure: &Figure, side: Side) -> Option<TwoJointLimb> {
+/// An arm with the point of its hand that is held.
+#[derive(Clone, Copy)]
+struct Arm {
+    limb: TwoJointLimb,
+    palm: JointPoint,
+}
+
+fn arm(figure: &Figure, side: Side) -> Option<Arm> {
     let joint = |role| figure.roles.joint(role);
-    TwoJointLimb::new(
+    let limb = TwoJointLimb::new(
         &figure.skeleton,
         joint(Role::UpperArm(side))?,
         joint(Role::LowerArm(side))?,
         joint(Role::Hand(side))?,
-    )
+    )?;
+    Some(Arm { limb, palm: palm(figure, side)? })
 }
 
-fn trail(clip: &Clip, arm: &TwoJointLimb) -> Vec<DVec3> {
-    let point = JointPoint { joint: arm.end, offset: arm.end_point };
-    Trails::of(clip, &[point]).rows.pop().unwrap_or_default()
+/// The point of a hand that is held: the middle of its palm, halfway from the wrist to the middle finger's knuckle, or to the end of a hand without
+/// fingers. A hand that has no end is held at its wrist; a figure without hands has none.
+pub fn palm(figure: &Figure, side: Side) -> Option<JointPoint> {
+    let hand = figure.roles.joint(Role::Hand(side))?;
+    let shape = &figure.roles.shape;
+    let own = figure.skeleton.world(&figure.rest)[hand].scene_from_joint.inverse();
+    let middle = shape.limb_end(hand).map(|end| own.transform_point3(0.5 * (end + shape.positions[hand])));
+    let offset = middle.filter(|place| place.is_finite()).unwrap_or_default();
+    Some(JointPoint { joint: hand, offset })
 }
 
-/// The clip with the end of an arm at its places, where it has such: by a displacement that is smooth over the whole clip.
-fn held(clip: &Clip, arm: &TwoJointLimb, places: &[Option<DVec3>], report: &mut Report) -> Clip {
+fn trail(clip: &Clip, arm: &Arm) -> Vec<DVec3> {
+    Trails::of(clip, &[arm.palm]).rows.pop().unwrap_or_default()
+}
+
+/// The clip with the hand of an arm at its places, where it has such: by a displacement that is smooth over the whole clip.
+fn held(clip: &Clip, arm: &Arm, places: &[Option<DVec3>], report: &mut Report) -> Clip {
     let row = trail(clip, arm);
     let known: Vec<Option<DVec3>> =
         places.iter().zip(&row).map(|(place, own)| place.map(|place| place - *own)).collect();
     let times: Vec<f64> = clip.grid.times.iter().collect();
     let shifts = spread_out(&known, &times, clip.duration_secs);
-    let (moved, made) = move_end(clip, arm, &shifts, &PlantOptions::default());
+    // The hand keeps its turn in the scene: what the wrist is moved by moves the palm.
+    let (moved, made) = move_end(clip, &arm.limb, &shifts, &PlantOptions::default());
     report.note_changes(&made.changes);
     moved
 }
@@ -164,7 +208,7 @@ fn held(clip: &Clip, arm: &TwoJointLimb, places: &[Option<DVec3>], report: &mut 
 ///
 /// Source: Lee & Shin 1999, "A hierarchical approach to interactive motion editing for human-like figures" (displacement maps fitted
 /// coarse to fine).
-fn spread_out(known: &[Option<DVec3>], times: &[f64], duration_secs: f64) -> Vec<DVec3> {
+pub(super) fn spread_out(known: &[Option<DVec3>], times: &[f64], duration_secs: f64) -> Vec<DVec3> {
     let held: Vec<f64> =
         known.iter().zip(times).filter(|(own, _)| own.is_some()).map(|(_, secs)| *secs).collect();
     let is_far = |secs: f64| {
@@ -202,23 +246,22 @@ fn spread_out(known: &[Option<DVec3>], times: &[f64], duration_secs: f64) -> Vec
     faded(&left, reach).into_iter().zip(smooth).map(|(left, smooth)| left + smooth).collect()
 }
 
-/// Tells the worst frame of each span in which the end of an arm is not where it is to be.
+/// Tells the worst frame of each span in which a hand is not where it is to be.
 fn tell_misses(
     clip: &Clip,
-    arm: &TwoJointLimb,
+    arm: &Arm,
     places: &[Option<DVec3>],
     spans: impl Iterator<Item = (usize, usize)>,
     what: &str,
     report: &mut Report,
 ) {
     let row = trail(clip, arm);
-    let [root, middle, end] = arm.points(&clip.skeleton, &clip.local_at(clip.grid.time(0)));
-    let length = root.distance(middle) + middle.distance(end);
+    let length = length(clip, arm);
     let off = |frame: usize| places[frame].map_or(0.0, |place| place.distance(row[frame]));
     for (first, last) in spans {
         let worst = (first..=last).max_by(|&a, &b| off(a).total_cmp(&off(b)));
         if let Some(frame) = worst.filter(|&frame| off(frame) > LEAST_MISS * length) {
-            report.missed.push(Missed { what: what.to_owned(), joint: arm.end, frame, by: off(frame) });
+            report.missed.push(Missed { what: what.to_owned(), joint: arm.limb.end, frame, by: off(frame) });
         }
     }
 }

@@ -6,6 +6,7 @@
 //! source's stand.
 
 mod alignment;
+mod carry_limits;
 mod chain;
 mod contact_file;
 mod figure;
@@ -28,6 +29,7 @@ pub use chain::spread;
 pub use contact_file::{ContactError, Contacts, read_contacts, write_contacts};
 pub use figure::Figure;
 pub use fingerprint::fingerprint;
+pub use hands::palm;
 pub use joint_map::{JointMap, Link, LinkKind};
 pub use map_file::{MapError, MapRow, read_map, write_map};
 pub use options::{FootContact, HandHold, HoldAt, KeptLimits, Options};

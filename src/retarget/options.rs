@@ -19,7 +19,7 @@ pub struct FootContact {
     pub span_secs: [f64; 2],
 }
 
-/// Where a hand is held.
+/// Where a hand is held, by the middle of its palm: see [`palm`](super::palm()).
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum HoldAt {
     /// Where it is: at the middle of its places in that time.
@@ -48,6 +48,8 @@ pub enum KeptLimits {
     Adult,
     /// These, by the target's joints.
     Given(Arc<Limits>),
+    /// These, by the source's joints: they are carried over with the clip, by the joint map.
+    OfSource(Arc<Limits>),
 }
 
 /// How a clip is carried over.

@@ -12,6 +12,7 @@ use crate::mend::{PlantOptions, move_end, plant_feet_at};
 use crate::skeleton::roles::{Role, Side};
 
 use super::figure::Figure;
+use super::keep::Goal;
 use super::options::{FootContact, frames_of};
 use super::plan::{Plan, Root};
 use super::report::{Missed, Report};
@@ -154,25 +155,43 @@ fn most(slides: &[Slide]) -> f64 {
 }
 
 impl Held {
-    /// Measures the feet anew after something else has changed the clip, and tells which were pulled off their places.
-    pub(super) fn measure_again(&self, before: &Clip, after: &Clip, report: &mut Report) {
-        let points: Vec<JointPoint> = self.feet.iter().flat_map(|foot| [foot.heel, foot.ball]).collect();
-        let rows = [before, after].map(|clip| Trails::of(clip, &points).rows);
-        let mut slides = Vec::with_capacity(self.spans.len());
-        for span in &self.spans {
-            let row = 2 * span.foot + usize::from(span.part == FootPart::Ball);
-            slides.push(slide_of(after, &rows[1][row], span.frames(), self.up));
-            let off = |frame: usize| rows[0][row][frame].distance(rows[1][row][frame]);
-            let worst = span.frames().max_by(|&a, &b| off(a).total_cmp(&off(b)));
-            if let Some(frame) = worst.filter(|&frame| off(frame) > LEAST_MISS * self.legs[span.foot]) {
-                report.missed.push(Missed {
-                    what: "limits pull the foot off the place where it is planted".to_owned(),
-                    joint: self.feet[span.foot].limb.end,
-                    frame,
-                    by: off(frame),
-                });
+    /// What is held, a goal for each foot: the places to which its points came in `clip`.
+    pub(super) fn goals(&self, clip: &Clip) -> Vec<Goal> {
+        let count = clip.grid.count();
+        let goal = |(index, foot): (usize, &Foot)| {
+            let spans: Vec<&PlantedSpan> = self.spans.iter().filter(|span| span.foot == index).collect();
+            let rows = Trails::of(clip, &[foot.heel, foot.ball]).rows;
+            let points = [(FootPart::Heel, foot.heel), (FootPart::Ball, foot.ball)];
+            let points = points.into_iter().zip(rows).filter_map(|((part, point), row)| {
+                let mut places = vec![None; count];
+                for span in spans.iter().filter(|span| span.part == part) {
+                    for frame in span.frames() {
+                        places[frame] = Some(row[frame]);
+                    }
+                }
+                places.iter().any(Option::is_some).then_some((point, places))
+            });
+            Goal {
+                limb: foot.limb,
+                points: points.collect(),
+                spans: spans.iter().map(|span| (span.first_frame, span.last_frame)).collect(),
+                size: self.legs[index],
+                is_foot: true,
+                what: "limits pull the foot off the place where it is planted",
             }
-        }
+        };
+        self.feet.iter().enumerate().map(goal).filter(|goal| !goal.points.is_empty()).collect()
+    }
+
+    /// Measures slide anew after something else has changed the clip.
+    pub(super) fn measure_again(&self, after: &Clip, report: &mut Report) {
+        let points: Vec<JointPoint> = self.feet.iter().flat_map(|foot| [foot.heel, foot.ball]).collect();
+        let rows = Trails::of(after, &points).rows;
+        let slide = |span: &PlantedSpan| {
+            let row = 2 * span.foot + usize::from(span.part == FootPart::Ball);
+            slide_of(after, &rows[row], span.frames(), self.up)
+        };
+        let slides: Vec<Slide> = self.spans.iter().map(slide).collect();
         if let (Some(slide), Some(drift)) = (&mut report.slide, &mut report.drift) {
             slide[1] = sum(&slides);
             drift[1] = most(&slides);

@@ -92,19 +92,21 @@ pub fn retarget(
         measure::measure(clip, source, target, map, &plan, &result, &mut report);
         report.unheld_direction_rad = report.worst_direction_rad();
     }
-    let mut held = None;
+    let (mut held, mut goals) = (None, Vec::new());
     if options.plant_feet {
         let said = options.feet.as_deref();
         (result, held) = stand::hold_feet(clip, [source, target], &plan, said, result, &mut report);
     }
     if !options.hands.is_empty() {
-        result = hands::hold_hands(clip, [source, target], &plan, &options.hands, result, &mut report);
+        (result, goals) =
+            hands::hold_hands(clip, [source, target], &plan, &options.hands, result, &mut report);
     }
     if let Some(kept) = &options.limits {
-        if let Some(limits) = keep::limits_for(kept, target, &result, &mut report) {
-            let clamped = keep::keep_limits(&limits, &result, &mut report);
+        if let Some(limits) = keep::limits_for(kept, [source, target], &plan, &result, &mut report) {
+            goals.extend(held.iter().flat_map(|held| held.goals(&result)));
+            let clamped = keep::keep_limits(&limits, plan.root.as_ref(), &goals, &result, &mut report);
             if let Some(held) = &held {
-                held.measure_again(&result, &clamped, &mut report);
+                held.measure_again(&clamped, &mut report);
             }
             keep::note_use(&limits, &result, &clamped, &mut report);
             result = clamped;
@@ -117,6 +119,9 @@ pub fn retarget(
     }
     if options.measure {
         measure::measure(clip, source, target, map, &plan, &result, &mut report);
+        if !is_changed {
+            report.unheld_direction_rad = report.worst_direction_rad();
+        }
     }
     Ok(Retargeted { clip: result, report })
 }

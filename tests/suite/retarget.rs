@@ -5,13 +5,15 @@ use std::sync::Arc;
 
 use glam::{DAffine3, DVec3};
 use proptest::prelude::*;
-use turnwright::clip::{Clip, FootPart, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
+use turnwright::clip::{
+    Clip, FootPart, FrameGrid, JointPoint, JointTracks, RotationTrack, Times, VectorTrack,
+};
 use turnwright::exchange::{self, disk, joint_maps};
 use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
 use turnwright::retarget::{
     Contacts, Figure, FootContact, HandHold, HoldAt, JointMap, KeptLimits, MapError, MapRow, Options,
-    RestPick, Retargeted, Transfer, find_contacts, fingerprint, read_contacts, read_map, retarget, spread,
-    write_contacts, write_map,
+    RestPick, Retargeted, Transfer, find_contacts, fingerprint, palm, read_contacts, read_map, retarget,
+    spread, write_contacts, write_map,
 };
 use turnwright::rotor::{Bivector, Rotor};
 use turnwright::skeleton::roles::{Role, Side};
@@ -476,8 +478,8 @@ fn standing(skeleton: &Arc<Skeleton>, build: &Build) -> Clip {
     clip
 }
 
-fn joint_place(clip: &Clip, joint: usize, frame: usize) -> DVec3 {
-    clip.world_at(clip.grid.time(frame))[joint].position()
+fn point_place(clip: &Clip, point: JointPoint, frame: usize) -> DVec3 {
+    clip.world_at(clip.grid.time(frame))[point.joint].scene_from_joint.transform_point3(point.offset)
 }
 
 #[test]
@@ -507,25 +509,30 @@ fn hands_are_held_at_points_and_at_each_other() {
     let stocky = person(&B).map_places(|p| DVec3::new(1.1 * p.x, 0.9 * p.y, p.z));
     let target = Arc::new(stocky.skeleton());
     let loose = carried(&clip, &target, &Options::default());
-    let hand = |side| stocky.at(Role::Hand(side));
-    let [left, right] = Side::BOTH.map(hand);
-    let point = joint_place(&loose.clip, left, 25) + DVec3::new(-0.1, 0.05, 0.02);
+    let figures = [Figure::new(&skeleton), Figure::new(&target)];
+    let palms = |figure: &Figure| Side::BOTH.map(|side| palm(figure, side).expect("a hand"));
+    let [left, right] = palms(&figures[1]);
+    // Halfway from the wrist at 0.71 m to the end of the hand at 0.88, wider by a tenth.
+    let wrist = stocky.places[stocky.at(Role::Hand(Side::Left))];
+    let reach = figures[1].roles.shape.positions[left.joint].distance(wrist) + left.offset.length();
+    assert!((reach - 1.1 * 0.085).abs() < 1e-3, "{reach}");
+    let point = point_place(&loose.clip, left, 25) + DVec3::new(-0.1, 0.05, 0.02);
     let hold = HandHold { side: Side::Left, span_secs: [0.5, 1.0], at: HoldAt::Place(point) };
     let hands = vec![hold];
     let held = carried(&clip, &target, &Options { hands, ..Options::default() });
     for frame in 15..=30 {
-        assert!(joint_place(&held.clip, left, frame).distance(point) < 1e-6, "frame {frame}");
+        assert!(point_place(&held.clip, left, frame).distance(point) < 1e-6, "frame {frame}");
         // The hand keeps its turn, and the other one all it has.
         let secs = clip.grid.time(frame);
         let [own, its] = [&loose.clip, &held.clip].map(|clip| clip.world_at(secs));
-        assert!(own[left].rotation.turn_to(its[left].rotation) < 1e-9);
-        assert_eq!(own[right], its[right]);
+        assert!(own[left.joint].rotation.turn_to(its[left.joint].rotation) < 1e-9);
+        assert_eq!(own[right.joint], its[right.joint]);
     }
     assert!(held.report.missed.is_empty(), "{:?}", held.report.missed);
     assert!(held.report.largest_correction.is_some());
     // No jump: from frame to frame the held hand never moves much faster than the loose one.
     let fastest = |clip: &Clip| {
-        let step = |frame| joint_place(clip, left, frame).distance(joint_place(clip, left, frame + 1));
+        let step = |frame| point_place(clip, left, frame).distance(point_place(clip, left, frame + 1));
         (0..59).map(step).fold(0.0, f64::max)
     };
     assert!(fastest(&held.clip) < 2.5 * fastest(&loose.clip) + 0.01);
@@ -534,16 +541,19 @@ fn hands_are_held_at_points_and_at_each_other() {
     let far = HandHold { at: HoldAt::Place(point + DVec3::X * 2.0), ..hold };
     let missed = carried(&clip, &target, &Options { hands: vec![far], ..Options::default() });
     let [own] = missed.report.missed.as_slice() else { panic!("{:?}", missed.report.missed) };
-    let off = joint_place(&missed.clip, left, own.frame).distance(point + DVec3::X * 2.0);
-    assert!((own.by - off).abs() < 1e-9 && own.joint == left && (15..=30).contains(&own.frame), "{own:?}");
+    let off = point_place(&missed.clip, left, own.frame).distance(point + DVec3::X * 2.0);
+    assert!(
+        (own.by - off).abs() < 1e-9 && own.joint == left.joint && (15..=30).contains(&own.frame),
+        "{own:?}"
+    );
 
     // At each other: as far apart, and in the direction, as in the source, scaled by the legs.
     let both = HandHold { side: Side::Left, span_secs: [0.5, 1.0], at: HoldAt::OtherHand };
     let held = carried(&clip, &target, &Options { hands: vec![both], ..Options::default() });
-    let own = Side::BOTH.map(|side| build.at(Role::Hand(side)));
+    let own = palms(&figures[0]);
     for frame in 15..=30 {
         let apart =
-            |clip: &Clip, [a, b]: [usize; 2]| joint_place(clip, b, frame) - joint_place(clip, a, frame);
+            |clip: &Clip, [a, b]: [JointPoint; 2]| point_place(clip, b, frame) - point_place(clip, a, frame);
         let wanted = apart(&clip, own) * held.report.scale;
         let is_told = !held.report.missed.is_empty();
         assert!(apart(&held.clip, [left, right]).distance(wanted) < 1e-6 || is_told, "frame {frame}");
@@ -591,9 +601,54 @@ fn limits_are_kept_after_all_else_and_what_they_cost_is_told() {
     assert!(told.beyond_before > 30 && told.most_beyond_before_rad > 0.2, "{told:?}");
     assert_eq!(made.report.limits_title, "stiff");
     assert!(made.report.largest_clamp.is_some_and(|own| own.joint == knee && own.by_rad > 0.2));
-    // The leg can no longer stand where it stood: that is listed.
+    // The hips give way, so that the foot stands all the same, at the very place where it stood.
+    let missed = &made.report.missed;
+    assert!(missed.is_empty(), "{missed:?}");
+    let leg = Figure::new(&target).roles.shape.leg_length;
+    let drift = made.report.drift.expect("a foot is planted");
+    assert!(drift[1] < 2e-3 * leg, "{drift:?}");
+
+    // A foot that no knee within 40 degrees could leave where it is, since the other leg holds the hips: listed, with size and frame.
+    let narrow = |side: Side, span_secs| FootContact { side, part: FootPart::Heel, span_secs };
+    let both = vec![narrow(Side::Left, [0.2, 1.5]), narrow(Side::Right, [0.2, 1.5])];
+    let straight = target_build.at(Role::LowerLeg(Side::Right));
+    let stiff = Range { swing: SwingLimit::Cone { half_rad: 0.01 }, twist: Interval::FREE };
+    let bent_on = Rotor::from_plane_angles(Bivector::from_axis(DVec3::X * 1.3));
+    let mut two = (*limits).clone();
+    two.joints.insert(
+        straight,
+        JointLimit::new(target.joints()[straight].rest.rotation * bent_on, DVec3::Y, DVec3::X, stiff),
+    );
+    let options =
+        Options { feet: Some(both), limits: Some(KeptLimits::Given(Arc::new(two.clone()))), ..options };
+    let made = carried(&clip, &target, &options);
+    assert!(two.keeping(&made.clip).iter().all(|own| own.beyond_limit == 0));
     let missed = &made.report.missed;
     assert!(missed.iter().any(|own| own.what.contains("limits") && own.by > 0.01), "{missed:?}");
+
+    // Limits of the source's own knee reach the target's by the joint map, whatever axes its joints have.
+    let turned = Arc::new(
+        target_build.skeleton_with(|joint| Rotor::from_plane_angles(Bivector::new(joint as f64, 0.3, -0.7))),
+    );
+    let knees = [legs(&build, Side::Left)[1], knee];
+    let limit = JointLimit::new(skeleton.joints()[knees[0]].rest.rotation, DVec3::Y, DVec3::X, hinge);
+    let own = Limits { title: "own".to_owned(), joints: [(knees[0], limit)].into() };
+    let options = Options { limits: Some(KeptLimits::OfSource(Arc::new(own))), ..Options::default() };
+    let loose = carried(&clip, &turned, &Options { limits: None, ..options.clone() });
+    let made = carried(&clip, &turned, &options);
+    let [told] = made.report.limits.as_slice() else { panic!("{:?}", made.report.limits) };
+    assert_eq!((told.joint, told.beyond), (knee, 0));
+    // As far beyond as the source's knee was: 60 degrees of 40.
+    assert!((told.most_beyond_before_rad - 20.0_f64.to_radians()).abs() < 1e-6, "{told:?}");
+    let bend = |clip: &Clip| {
+        let [hip, knee, ankle] =
+            [Role::UpperLeg(Side::Left), Role::LowerLeg(Side::Left), Role::Foot(Side::Left)]
+                .map(|role| clip.world_at(0.5)[target_build.at(role)].position());
+        (knee - hip).angle_between(ankle - knee).to_degrees()
+    };
+    // The limb is bent by some degrees at rest, which the limit does not count.
+    let bends = [bend(&loose.clip), bend(&made.clip)];
+    assert!(bends[0] - bends[1] > 20.0, "{bends:?}");
 
     // The preset for adults: within it too.
     let options = Options { limits: Some(KeptLimits::Adult), ..Options::default() };
@@ -673,6 +728,29 @@ fn any_pose_can_count_as_rest() {
     let map = JointMap::automatic(&source, &figure);
     let made = retarget(&clip, &source, &figure, &map, &Options::default()).expect("it is mapped");
     assert!(made.report.worst_direction_rad() < 1e-6);
+}
+
+#[test]
+fn contacts_do_not_hang_on_the_pose_that_counts_as_rest() {
+    for file in ["cmu_05_06_dance.bvh", "cmu_02_01_walk.bvh"] {
+        let Some(path) = shared(&format!("data/bvh/{file}")) else { return };
+        let source = exchange::open(&path, &exchange::OpenOptions::default()).expect("it opens");
+        let clip = &source.clips[0];
+        let own = Figure::new(&clip.skeleton);
+        let usual = find_contacts(clip, &own);
+        assert!(usual.len() > 4, "{file}: {usual:?}");
+        for share in [0.1, 0.25, 0.4, 0.5, 0.6, 0.75, 0.9] {
+            let secs = clip.duration_secs * share;
+            let pick = RestPick { frame_secs: Some(secs), is_straightened: false };
+            let figure = pick.figure(&clip.skeleton, Some(clip), None);
+            assert_eq!(figure.roles.shape.up, own.roles.shape.up, "{file} at {secs}");
+            assert!(figure.roles.iter().eq(own.roles.iter()), "{file} at {secs}: joints stay what they are");
+            assert_eq!(find_contacts(clip, &figure), usual, "{file} at {secs}");
+            let straight =
+                RestPick { is_straightened: true, ..pick }.figure(&clip.skeleton, Some(clip), None);
+            assert_eq!(find_contacts(clip, &straight), usual, "{file} straightened at {secs}");
+        }
+    }
 }
 
 #[test]

@@ -12,10 +12,9 @@ use super::super::view_models::{BarMark, Lane, carry_facts, with_hold};
 use super::super::window::Window;
 use super::answers::Answer;
 use crate::exchange::{self, Guard, OpenOptions, Source, disk, joint_maps};
-use crate::retarget::{Figure, HoldAt, read_map, write_map};
+use crate::retarget::{Figure, HoldAt, palm, read_map, write_map};
 use crate::scene::{Edit, Others, PassId, PassStep, RetargetPass};
 use crate::skeleton::Skeleton;
-use crate::skeleton::roles::Role;
 
 /// Rows of a joint map by labels.
 type Rows = Vec<(Option<String>, Option<String>)>;
@@ -189,11 +188,11 @@ impl Window {
         let here = || {
             let Lane::Hand(side) = mark.lane else { return None };
             let facts = self.bench.carry.as_ref()?.facts.as_ref().ok()?;
-            let hand = facts.setting.target.roles.joint(Role::Hand(side))?;
+            let hand = palm(&facts.setting.target, side)?;
             let span = own.hands.get(mark.index)?.span_secs;
             let made = self.bench.carry_made()?;
             let secs = self.bench.session.playback.playhead_secs.clamp(span[0], span[1]);
-            Some(made.world_at(secs).get(hand)?.position())
+            Some(made.world_at(secs).get(hand.joint)?.scene_from_joint.transform_point3(hand.offset))
         };
         let at = match at {
             HoldAt::Place(_) => HoldAt::Place(here().unwrap_or_default()),

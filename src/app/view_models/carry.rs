@@ -3,10 +3,12 @@
 use std::sync::Arc;
 
 use crate::clip::{Clip, FootPart};
-use crate::retarget::{Driver, FootContact, HandHold, HoldAt, LinkKind, Report, Transfer, find_contacts};
+use crate::retarget::{
+    Driver, Figure, FootContact, HandHold, HoldAt, LinkKind, Report, Transfer, find_contacts,
+};
 use crate::scene::{Others, RetargetPass, RetargetSetting};
 use crate::skeleton::Skeleton;
-use crate::skeleton::roles::Side;
+use crate::skeleton::roles::{Role, Side};
 
 /// Links less sure than this are shown as questions.
 const SURE: f64 = 0.5;
@@ -22,6 +24,40 @@ pub struct CarryFacts {
     pub found: Vec<FootContact>,
     /// The rows of the table.
     pub rows: Vec<CarryRow>,
+    /// Doubts that belong to no row: of the figures as wholes, of joints of the source, of the map. Nothing answers these, so long as nobody has
+    /// corrected the map.
+    pub open: Vec<String>,
+}
+
+impl CarryFacts {
+    /// Why a contact in this lane could not be held; `None` where it can.
+    pub fn missing_for(&self, lane: Lane) -> Option<String> {
+        let lacks =
+            |figure: &Figure, roles: &[Role]| roles.iter().any(|role| figure.roles.joint(*role).is_none());
+        let (part, is_missing) = match lane {
+            Lane::Foot(side, _) => {
+                let leg = [Role::UpperLeg(side), Role::LowerLeg(side), Role::Foot(side)];
+                let both = [&self.setting.source, &self.setting.target];
+                (format!("{} leg", side.name()), both.map(|figure| lacks(figure, &leg)))
+            }
+            Lane::Hand(side) => {
+                let arm = [Role::UpperArm(side), Role::LowerArm(side), Role::Hand(side)];
+                (format!("{} arm", side.name()), [false, lacks(&self.setting.target, &arm)])
+            }
+        };
+        let who = match is_missing {
+            [false, false] => return None,
+            [true, false] => "the source figure has no",
+            [false, true] => "the target figure has no",
+            [true, true] => "neither figure has a",
+        };
+        Some(format!("It could not be held: {who} {part}"))
+    }
+
+    /// How much a person should look at: rows that are questions, and doubts without a row.
+    pub fn questions(&self) -> usize {
+        self.rows.iter().filter(|row| row.is_question).count() + self.open.len()
+    }
 }
 
 /// Works them out.
@@ -33,7 +69,8 @@ pub fn carry_facts(clip: &Arc<Clip>, pass: &RetargetPass, others: &dyn Others) -
     let transfer = Transfer::new(clip, &setting.source, &setting.target, &setting.map).ok();
     let found = find_contacts(clip, &setting.source);
     let rows = carry_rows(&setting, transfer.as_ref());
-    Ok(CarryFacts { setting, transfer, found, rows })
+    let open = if pass.rows.is_empty() { open_doubts(&setting) } else { Vec::new() };
+    Ok(CarryFacts { setting, transfer, found, rows, open })
 }
 
 /// How a target joint comes to its turns.
@@ -95,6 +132,18 @@ impl CarryRow {
         let question = if self.is_question { ", to be looked at" } else { "" };
         format!("Map {} from {}, {}{sure}{question}", self.target_label, self.source_label, self.state.word())
     }
+}
+
+/// Doubts of the map but for those that rows show.
+fn open_doubts(setting: &RetargetSetting) -> Vec<String> {
+    let target = &setting.target;
+    let listed: Vec<usize> = target.skeleton.listed().collect();
+    let shown: Vec<String> = listed
+        .iter()
+        .filter_map(|joint| target.roles.doubts.iter().find(|doubt| doubt.joint == Some(*joint)))
+        .map(|doubt| format!("target: {}", doubt.text))
+        .collect();
+    setting.map.doubts.iter().filter(|doubt| !shown.contains(doubt)).cloned().collect()
 }
 
 fn carry_rows(setting: &RetargetSetting, transfer: Option<&Transfer>) -> Vec<CarryRow> {
@@ -376,8 +425,14 @@ pub fn carry_lines(report: &Report, target: &Skeleton) -> Vec<CarryLine> {
     );
     let worst = report.directions.iter().max_by(|a, b| a.worst_rad.total_cmp(&b.worst_rad));
     if let Some(worst) = worst {
+        let unheld = report.unheld_direction_rad;
+        let before = if unheld < worst.worst_rad {
+            format!("; {:.2}° before anything was held", unheld.to_degrees())
+        } else {
+            String::new()
+        };
         let text = format!(
-            "Arms and legs point within {:.2}° of the source's ({})",
+            "Arms and legs point within {:.2}° of the source's ({}{before})",
             worst.worst_rad.to_degrees(),
             target.label(worst.joint)
         );

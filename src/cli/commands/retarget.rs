@@ -6,7 +6,7 @@ use std::sync::Arc;
 use crate::cli::DONE;
 use crate::cli::args::{RetargetArgs, Straighten};
 use crate::cli::error::CliError;
-use crate::cli::input;
+use crate::cli::input::{self, Input};
 use crate::cli::limits::LimitsSource;
 use crate::cli::output::Output;
 use crate::clip::Clip;
@@ -42,11 +42,7 @@ pub(crate) fn run(args: &RetargetArgs, output: &mut Output) -> Result<u8, CliErr
     let clip = input.clip();
     let [source, target] = figures(args, clip, [&input.source.path, &onto.path], &onto, &skeleton)?;
     let map = joint_map(args, [&source, &target], &onto.path, output)?;
-    let limits = LimitsSource::open(args.limits.as_ref())?;
-    let limits = match limits.for_skeleton(&skeleton, output)? {
-        Some(limits) => Some(KeptLimits::Given(limits)),
-        None => args.limits.is_some().then_some(KeptLimits::Adult),
-    };
+    let limits = kept_limits(args, &input, &skeleton, output)?;
     let contacts = contacts(args, clip, &source, output)?;
     let options = Options {
         plant_feet: args.plant_feet || contacts.feet.is_some(),
@@ -75,6 +71,30 @@ pub(crate) fn run(args: &RetargetArgs, output: &mut Output) -> Result<u8, CliErr
     output.notes(&args.output, &written.notes);
     output.say(&format!("wrote {}", args.output.display()));
     Ok(DONE)
+}
+
+/// The limits that are asked for: of the target's joints, or of the clip's own, to be carried over.
+fn kept_limits(
+    args: &RetargetArgs,
+    input: &Input,
+    skeleton: &Skeleton,
+    output: &mut Output,
+) -> Result<Option<KeptLimits>, CliError> {
+    if let Some(names) = &args.carry_limits {
+        let limits = LimitsSource::open(names.first())?.fit(input, output)?;
+        let own = limits.into_iter().nth(input.first()).flatten();
+        return own.map(|own| Some(KeptLimits::OfSource(own))).ok_or_else(|| CliError::Argument {
+            place: "--carry-limits".to_owned(),
+            expected: "limits of the clip's joints".to_owned(),
+            found: "none".to_owned(),
+            advice: "name a file of limits, or a scene whose clip has some",
+        });
+    }
+    let limits = LimitsSource::open(args.limits.as_ref())?;
+    Ok(match limits.for_skeleton(skeleton, output)? {
+        Some(limits) => Some(KeptLimits::Given(limits)),
+        None => args.limits.is_some().then_some(KeptLimits::Adult),
+    })
 }
 
 /// Both figures, each in the pose that counts as its rest.
@@ -233,12 +253,15 @@ fn open_onto(args: &RetargetArgs, output: &mut Output) -> Result<(Source, Arc<Sk
 
 /// What it came to, in some lines.
 fn summary(report: &retarget::Report, target: &Skeleton) -> Vec<String> {
+    let [unheld, worst] = [report.unheld_direction_rad, report.worst_direction_rad()].map(f64::to_degrees);
+    let before = if report.unheld_direction_rad < report.worst_direction_rad() {
+        format!(", {unheld:.3} before anything was held")
+    } else {
+        String::new()
+    };
     let mut lines = vec![format!(
-        "{} of {} joints driven; lengths x{:.4}; arms and legs point within {:.3} degrees of the source's",
-        report.driven[0],
-        report.driven[1],
-        report.scale,
-        report.worst_direction_rad().to_degrees()
+        "{} of {} joints driven; lengths x{:.4}; arms and legs point within {worst:.3} degrees of the source's{before}",
+        report.driven[0], report.driven[1], report.scale,
     )];
     if let (Some([before, after]), Some([far_before, far_after])) = (report.slide, report.drift) {
         lines.push(format!(

@@ -222,6 +222,7 @@ pub(super) enum HoldAt {
 pub(super) enum KeptLimits {
     Adult,
     Given(Limits),
+    OfSource(Limits),
 }
 
 fn are_plain(rests: &(RestPick, RestPick)) -> bool {

@@ -17,6 +17,9 @@ pub(super) fn retarget_from(pass: mirror::Retarget) -> Result<RetargetPass, Stri
         None => None,
         Some(mirror::KeptLimits::Adult) => Some(KeptLimits::Adult),
         Some(mirror::KeptLimits::Given(limits)) => Some(KeptLimits::Given(Arc::new(limits_from(&limits)?))),
+        Some(mirror::KeptLimits::OfSource(limits)) => {
+            Some(KeptLimits::OfSource(Arc::new(limits_from(&limits)?)))
+        }
     };
     let rest =
         |own: mirror::RestPick| RestPick { frame_secs: own.frame_seconds, is_straightened: own.straightened };
@@ -33,7 +36,7 @@ pub(super) fn retarget_from(pass: mirror::Retarget) -> Result<RetargetPass, Stri
 }
 
 /// The pass as the file holds it.
-pub(super) fn retarget_to(pass: &RetargetPass) -> mirror::Retarget {
+pub(super) fn retarget_to(pass: &RetargetPass, labels: &dyn Fn(usize) -> String) -> mirror::Retarget {
     let foot = |own: &FootContact| mirror::FootContact {
         side: own.side.name().to_owned(),
         part: own.part.name().to_owned(),
@@ -66,6 +69,7 @@ pub(super) fn retarget_to(pass: &RetargetPass) -> mirror::Retarget {
             KeptLimits::Given(limits) => {
                 mirror::KeptLimits::Given(limits_to(limits, &|joint| format!("target joint {joint}")))
             }
+            KeptLimits::OfSource(limits) => mirror::KeptLimits::OfSource(limits_to(limits, labels)),
         }),
     }
 }
@@ -123,18 +127,21 @@ mod tests {
             plant_feet: true,
             feet: Some(vec![contact]),
             hands: places.into_iter().map(hold).collect(),
-            limits: Some(KeptLimits::Given(Arc::new(limits))),
+            limits: Some(KeptLimits::Given(Arc::new(limits.clone()))),
         };
+        let carried = RetargetPass { limits: Some(KeptLimits::OfSource(Arc::new(limits))), ..pass.clone() };
         let adult = RetargetPass { limits: Some(KeptLimits::Adult), feet: Some(vec![]), ..pass.clone() };
         let plain = RetargetPass::new(1);
-        for (pass, version) in [(pass, 3), (adult, 3), (plain, 2)] {
+        for (pass, version) in [(pass, 3), (carried, 3), (adult, 3), (plain, 2)] {
             let saved = step_to(&PassStep::from(pass.clone()), &|joint| format!("joint {joint}"));
             assert_eq!(saved.version(), version);
             let text = ::ron::to_string(&saved).unwrap();
             let back: mirror::Step = ::ron::from_str(&text).unwrap();
             let PassStep::Retarget(mut back) = step_from(back).unwrap() else { panic!("{text}") };
             // Angles of limits go through degrees.
-            if let (Some(KeptLimits::Given(own)), Some(KeptLimits::Given(its))) = (&pass.limits, &back.limits)
+            if let (Some(KeptLimits::Given(own)), Some(KeptLimits::Given(its)))
+            | (Some(KeptLimits::OfSource(own)), Some(KeptLimits::OfSource(its))) =
+                (&pass.limits, &back.limits)
             {
                 assert_eq!((own.title.as_str(), own.joints.len()), (its.title.as_str(), its.joints.len()));
                 back.limits.clone_from(&pass.limits);

@@ -85,7 +85,7 @@ pub(super) fn step_to(step: &PassStep, label: &dyn Fn(usize) -> String) -> mirro
         PassStep::Blend(pass) => mirror::Step::Blend(blend_to(pass)),
         PassStep::Retarget(pass) => {
             let mirror::Retarget { onto, rows, plant_feet, rests, roots, feet, hands, limits } =
-                retarget_to(pass);
+                retarget_to(pass, label);
             mirror::Step::Retarget { onto, rows, plant_feet, rests, roots, feet, hands, limits }
         }
         PassStep::Smooth(pass) => mirror::Step::Smooth {

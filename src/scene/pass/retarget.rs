@@ -31,7 +31,7 @@ pub struct RetargetPass {
     pub feet: Option<Vec<FootContact>>,
     /// Hands that are held.
     pub hands: Vec<HandHold>,
-    /// Limits that the result keeps to; [`KeptLimits::Given`] by the target's joints.
+    /// Limits that the result keeps to; [`KeptLimits::Given`] by the target's joints, [`KeptLimits::OfSource`] by the clip's.
     pub limits: Option<KeptLimits>,
 }
 
@@ -152,6 +152,19 @@ impl PassKind for RetargetPass {
         notes.extend(report.notes.iter().cloned());
         notes.extend(report.missed.iter().map(|missed| missed.sentence(&setting.target.skeleton)));
         Ok(Outcome { clip: carried, notes })
+    }
+
+    fn joints(&self) -> Vec<usize> {
+        match &self.limits {
+            Some(KeptLimits::OfSource(limits)) => limits.joints.keys().copied().collect(),
+            _ => Vec::new(),
+        }
+    }
+
+    fn renumber(&mut self, now: &dyn Fn(usize) -> Option<usize>) {
+        if let Some(KeptLimits::OfSource(limits)) = &mut self.limits {
+            *limits = Arc::new(limits.renumbered(now));
+        }
     }
 
     fn needs(&self) -> Vec<Need> {

@@ -54,7 +54,7 @@ pub(super) fn find(skeleton: &Skeleton, rest: &[Transform], root: Option<usize>)
         finder.doubt(
             Some(other),
             None,
-            format!("a second figure hangs under `{label}`; only the first got roles"),
+            format!("a second figure hangs under `{label}`: one figure of a file is looked at and carried at a time, and the others stay as they are; which one can be chosen by the joint it hangs on"),
         );
     }
     finder.others = others;

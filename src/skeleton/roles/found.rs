@@ -2,6 +2,8 @@
 
 use std::collections::BTreeMap;
 
+use glam::DVec3;
+
 use super::super::{Skeleton, Transform};
 use super::role::{Finger, Role, Side};
 use super::shape::RestShape;
@@ -135,6 +137,17 @@ impl Roles {
     /// When `rest` has not one transform for each joint.
     pub fn find_below(skeleton: &Skeleton, rest: &[Transform], root: Option<usize>) -> Self {
         super::find::find(skeleton, rest, root)
+    }
+
+    /// The same roles in another pose, with the shape that the figure has there. What a joint is does not hang on the pose that counts as rest:
+    /// a pose from within a motion would show it worse. `up` is where up is in that pose's scene; unit.
+    ///
+    /// # Panics
+    /// When `pose` has not one transform for each joint.
+    #[must_use]
+    pub fn posed(&self, skeleton: &Skeleton, pose: &[Transform], up: DVec3) -> Self {
+        let top = self.joint(Role::Hips).or_else(|| skeleton.listed().next());
+        Self { shape: self.shape.posed(skeleton, pose, up, top), ..self.clone() }
     }
 
     /// The joint that plays a role.

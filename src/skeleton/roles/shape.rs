@@ -2,6 +2,7 @@
 
 use glam::DVec3;
 
+use super::super::{JointKind, Skeleton, Transform, WorldJoint};
 use crate::rotor::Rotor;
 
 /// The rest pose of a figure in the scene.
@@ -32,6 +33,58 @@ pub struct RestShape {
 }
 
 impl RestShape {
+    /// The shape in another pose: limbs end where they did on their joints, hinges and heading go along with what they belong to. `top` tells
+    /// how the figure as a whole is turned.
+    pub(super) fn posed(
+        &self,
+        skeleton: &Skeleton,
+        pose: &[Transform],
+        up: DVec3,
+        top: Option<usize>,
+    ) -> Self {
+        let worlds = skeleton.world(pose);
+        let positions: Vec<DVec3> = worlds.iter().map(WorldJoint::position).collect();
+        let rotations: Vec<Rotor> = worlds.iter().map(|world| world.rotation).collect();
+        let turned = |joint: usize| (rotations[joint] * self.rotations[joint].reverse()).normalize();
+        let is_below = |joint: usize, above: usize| {
+            std::iter::successors(skeleton.joints()[joint].parent, |&own| skeleton.joints()[own].parent)
+                .any(|own| own == above)
+        };
+        let ends: Vec<Option<DVec3>> = (0..positions.len())
+            .map(|joint| {
+                let end = self.ends[joint]?;
+                let at = (joint + 1..positions.len())
+                    .find(|&other| self.positions[other] == end && is_below(other, joint));
+                let along = turned(joint).apply(end - self.positions[joint]);
+                Some(at.map_or(positions[joint] + along, |other| positions[other]))
+            })
+            .collect();
+        let whole = top.map_or(Rotor::IDENTITY, turned);
+        // Heading alone: what leans is set upright the shortest way.
+        let forward = Rotor::between(whole.apply(self.up), up).apply(whole.apply(self.forward));
+        let forward = (forward - up * forward.dot(up)).normalize_or(self.forward);
+        let lowest = |joint: usize| {
+            let is_part = skeleton.joints()[joint].kind == JointKind::Joint;
+            let own = is_part.then(|| positions[joint].dot(up));
+            own.into_iter().chain(ends[joint].filter(|_| is_part).map(|end| end.dot(up)))
+        };
+        let ground = (0..positions.len()).flat_map(lowest).reduce(f64::min).unwrap_or(self.ground);
+        let hinges = (0..positions.len())
+            .map(|joint| self.hinges[joint].map(|hinge| turned(joint).apply(hinge)))
+            .collect();
+        Self {
+            up,
+            forward,
+            left: up.cross(forward),
+            ground,
+            positions,
+            rotations,
+            ends,
+            hinges,
+            ..self.clone()
+        }
+    }
+
     /// Where the limb of a joint ends: at the next joint of its chain, or at its tip. `None` where nothing follows.
     pub fn limb_end(&self, joint: usize) -> Option<DVec3> {
         self.ends[joint]

@@ -279,8 +279,14 @@ fn strip_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>, chosen: Optio
     }
     let lane = chosen_lane(sheet);
     let words = format!("New: {}", lane.words());
-    let new = ui.add_enabled(sheet.facts.is_some(), egui::Button::new(&words));
-    if new.on_hover_text("A contact around the playhead in the chosen lane").clicked() {
+    let missing = sheet.facts.and_then(|facts| facts.missing_for(lane));
+    let new = ui.add_enabled(sheet.facts.is_some() && missing.is_none(), egui::Button::new(&words));
+    let new = new.on_hover_text("A contact around the playhead in the chosen lane");
+    let new = match &missing {
+        Some(missing) => new.on_disabled_hover_text(missing.as_str()),
+        None => new,
+    };
+    if new.clicked() {
         let at = scope.bench.session.playback.playhead_secs;
         let end = scope.bench.carry.as_ref().map_or(at, |work| work.key.clip.duration_secs);
         let (changed, mark) =

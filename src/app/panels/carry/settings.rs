@@ -207,7 +207,8 @@ fn held_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     if feet.on_hover_text("Feet that stand in the source stand in the result: see the bars below").changed() {
         change(scope, sheet, RetargetPass { plant_feet: plant, ..pass.clone() });
     }
-    let mut within = pass.limits.is_some();
+    let is_own = matches!(pass.limits, Some(KeptLimits::OfSource(_)));
+    let mut within = pass.limits.is_some() && !is_own;
     let words = match &pass.limits {
         Some(KeptLimits::Given(limits)) => format!("Within limits {}", limits.title),
         _ => "Within adult limits".to_owned(),
@@ -216,6 +217,20 @@ fn held_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     let tip = "Joints are brought softly within their limits after all else. Population norms for plausible animation";
     if limits.on_hover_text(tip).changed() {
         change(scope, sheet, RetargetPass { limits: within.then_some(KeptLimits::Adult), ..pass.clone() });
+    }
+    // The clip's own limits, where it has some, or had when they were chosen.
+    let own = match &pass.limits {
+        Some(KeptLimits::OfSource(limits)) => Some(limits.clone()),
+        _ => scope.bench.work().and_then(|work| work.limits.clone()),
+    };
+    if let Some(own) = own {
+        let mut within = is_own;
+        let limits = ui.checkbox(&mut within, "Within this clip's limits");
+        let tip = format!("The limits {} of the clip's joints are carried over by the joint map", own.title);
+        if limits.on_hover_text(tip).changed() {
+            let limits = within.then_some(KeptLimits::OfSource(own));
+            change(scope, sheet, RetargetPass { limits, ..pass.clone() });
+        }
     }
 }
 

@@ -18,7 +18,7 @@ pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
         hint(ui, "The joint map is being made");
         return;
     };
-    let questions = facts.rows.iter().filter(|row| row.is_question).count();
+    let questions = facts.questions();
     let only = sheet.habits.questions_only;
     strip(ui, "Joint map", |ui| {
         let words = format!("Questions ({questions})");
@@ -32,7 +32,6 @@ pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     ui.painter().vline(ui.max_rect().left(), ui.max_rect().y_range(), (1.0, scope.look.line));
     let rows: Vec<&CarryRow> = facts.rows.iter().filter(|row| !only || row.is_question).collect();
     let area = ui.available_rect_before_wrap();
-    let doubts = &facts.setting.map.doubts;
     let head = Rect::from_min_size(area.min, vec2(area.width(), 20.0));
     let columns = Columns::of(ui, area, &facts.rows);
     for (x, words) in [
@@ -49,7 +48,12 @@ pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
         Rect::from_min_max(pos2(area.left(), head.bottom()), pos2(area.right(), area.bottom() - EDITOR));
     ui.scope_builder(egui::UiBuilder::new().max_rect(body), |ui| {
         if rows.is_empty() {
-            hint(ui, "No row is a question");
+            let words = if facts.open.is_empty() {
+                "No row is a question"
+            } else {
+                "No row is a question; what is asked of the figures as wholes stands below and in the report"
+            };
+            hint(ui, words);
             return;
         }
         ui.spacing_mut().item_spacing.y = 0.0;
@@ -75,10 +79,10 @@ pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
             editor_ui(ui, row, sheet, scope);
             return;
         }
-        let words = match doubts.as_slice() {
+        let words = match facts.open.as_slice() {
             [] => "Choose a row, or click a joint of the target figure, to change what drives it".to_owned(),
             [only] => only.clone(),
-            [first, ..] => format!("{first} (and {} more in the report)", doubts.len() - 1),
+            [first, ..] => format!("{first} (and {} more in the report)", facts.open.len() - 1),
         };
         ui.add(egui::Label::new(egui::RichText::new(words).size(12.5).color(scope.look.faint)).wrap());
     });
