@@ -5,7 +5,7 @@ use std::sync::Arc;
 
 use turnwright::clip::{Clip, RotationTrack, Smoothing};
 use turnwright::exchange::{OpenOptions, open};
-use turnwright::limit::{LearnOptions, Limits, learned};
+use turnwright::limit::{Clamp, ClampTo, LearnOptions, Limits, learned};
 use turnwright::mend::{SurveyOptions, survey};
 use turnwright::rotor::{Axis, Rotor};
 use turnwright::scene::{
@@ -111,7 +111,7 @@ fn passes_with_nothing_to_do_change_no_bit() {
     let nowhere = Scope { span_secs: Some([1e6, 2e6]), ..Scope::default() };
     let sound = survey(&clip, &SurveyOptions::default(), &Unwatched).unwrap();
     let mut steps: Vec<PassStep> = vec![
-        LimitsPass::new(wide).into(),
+        LimitsPass { clamp: Clamp::Hard(ClampTo::SameDirection), ..LimitsPass::new(wide) }.into(),
         SmoothPass { scope: nowhere, ..SmoothPass::new(Smoothing::gaussian(6.0)) }.into(),
         PushPass::default().into(),
         KeysPass::default().into(),

@@ -189,7 +189,7 @@ fn count(value: &Value) -> usize {
 
 #[test]
 fn every_figure_of_the_sheet_of_a_mended_capture_is_what_the_two_files_say() {
-    for file in ["cmu_05_06_dance.bvh", "mixed_order_6ch.bvh"] {
+    for file in ["zxy_19joints_30fps.bvh", "mixed_order_6ch.bvh"] {
         let Some(own) = mended(file) else { return };
         let (before, after) = (Plain::read(&own.before), Plain::read(&own.after));
         what_came_in(&own, &before);
@@ -439,7 +439,10 @@ fn the_passes_of_a_scene_are_on_the_sheet_with_their_numbers() {
     let label = |_: usize, _: usize, joint: usize| clip.skeleton.label(joint).to_owned();
     ron::write(&folder.path().join("night.ron"), &document, &label).unwrap();
 
-    run(folder.path(), &["mend", "night.ron", "-o", "out.bvh", "--kinds", "spike", "--proof", "sheet.json"]);
+    run(
+        folder.path(),
+        &["mend", "night.ron", "-o", "out.bvh", "--kinds", "spike", "--json", "--proof", "sheet.json"],
+    );
     let sheet: Value = serde_json::from_str(&text(&folder.path().join("sheet.json"))).unwrap();
     let first = &rows(&sheet, "passes")[0];
     assert_eq!(first["pass"], "Smooth below 6 Hz");
