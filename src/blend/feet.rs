@@ -3,7 +3,7 @@
 use crate::clip::{Clip, ContactOptions, Foot, FootPart, PlantedSpan, contacts, standing_feet};
 use crate::mend::{PlantOptions, PlantReport, plant_feet};
 
-use super::{BlendError, JoinPlace, Mask, MixAlong, join, mix};
+use super::{BlendError, JoinPlace, Mask, join};
 
 /// A foot is held where the clips that plant it weigh more than this together.
 const HELD: f64 = 0.55;
@@ -11,20 +11,6 @@ const HELD: f64 = 0.55;
 const LEAST_WEIGHT: f64 = 1e-3;
 /// A shorter contact is none, in frames.
 const LEAST_FRAMES: usize = 3;
-
-/// As [`mix()`], with feet held where they stand: where the clips that have a foot on the ground weigh more than half together, it
-/// keeps one place. Frames that are one clip's alone change only where a foot stands on from them into mixed ones, and for 0.15 s
-/// beside such a stand. Weight 0 is `a`, bit for bit.
-///
-/// # Errors
-/// As for [`mix()`].
-pub fn mix_on_feet(a: &Clip, b: &Clip, weight: &MixAlong, mask: &Mask) -> Result<Clip, BlendError> {
-    let mixed = mix(a, b, weight, mask)?;
-    let secs: Vec<f64> = mixed.grid.times.iter().collect();
-    let weights: Vec<f64> = secs.iter().map(|&secs| weight.at(secs)).collect();
-    let origins = Origins { first_secs: &secs, second_secs: &secs, weights: &weights };
-    Ok(held(&mixed, a, b, &origins, mask).map_or(mixed, |(held, _)| held))
-}
 
 /// As [`join()`], with feet held where they stand in the overlap: a foot that is down in both clips there stands at one place, from
 /// where it is set down in `a` to where it is lifted in `b`. So frames outside the overlap change where a foot stands on beyond its

@@ -1,19 +1,21 @@
-//! Mixing: between two clips by a weight, frame by frame or with their steps in time; and means of many.
+//! Mixing: between two clips by a weight, frame by frame or with their steps in time.
 
 use std::cmp::Ordering;
+use std::collections::BTreeSet;
 use std::sync::Arc;
 
 use glam::DVec3;
 
 use crate::clip::{self, Clip, Times};
+use crate::rotor::Rotor;
 use crate::rotor::batch::{self, Level, Streams};
-use crate::rotor::{Rotor, geodesic_mean};
 use crate::skeleton::smooth_step;
 
 use super::feet::{self, Origins};
 use super::frames::{self, Row, SLACK};
 use super::ground::{GroundMove, frame_above, tops};
 use super::registration::Registration;
+use super::root::{RootFrom, onto_one_way, summed_way};
 use super::{BlendError, Mask};
 
 /// A weight over time: knots `[secs, weight]` of the first clip, in order, with smooth monotone pieces between
@@ -65,18 +67,6 @@ impl MixAlong {
     }
 }
 
-/// Whose path and heading on the ground a mix follows.
-#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
-pub enum RootFrom {
-    /// Both, by the weight.
-    #[default]
-    Both,
-    /// The first clip's.
-    First,
-    /// The second clip's.
-    Second,
-}
-
 /// `a` and `b` mixed frame by frame at `a`'s frames up to the shorter end: each joint turns to the slerp on the near
 /// side, `slerp(a, b, weight · factor)`, places and sizes move on straight lines, the root included.
 ///
@@ -86,6 +76,49 @@ pub enum RootFrom {
 /// # Errors
 /// When a weight is not within 0 and 1 or a clip has no frames.
 pub fn mix(a: &Clip, b: &Clip, weight: &MixAlong, mask: &Mask) -> Result<Clip, BlendError> {
+    mix_on_ground(a, b, weight, mask, &|_, _, _| None)
+}
+
+/// As [`mix()`], with more said of how: whose way over the ground is taken, and whether feet are held.
+///
+/// Where the first clip's way is taken the second is set down at its place and turned to its heading at each frame, and the other way
+/// round, whatever the mask says of the root. With a weight of 0 all along the result is `a`, whoever's way was asked for.
+///
+/// Where feet are held and the weight changes, the way of both is summed from the steps of both, as in [`mix_aligned`]: the mean of
+/// two places would drag the body from one to the other over feet that stand.
+///
+/// # Errors
+/// As for [`mix()`].
+pub fn mix_by(a: &Clip, b: &Clip, how: &MixHow) -> Result<Clip, BlendError> {
+    let MixHow { weight, mask, root, holds_feet } = how;
+    let is_summed = *holds_feet && *root == RootFrom::Both && weight.only().is_none();
+    let mixed = mix_on_ground(a, b, weight, mask, &|base, times, weights| {
+        if !is_summed {
+            return onto_one_way(base, b, times, *root);
+        }
+        let factor = tops_of(a, b).first().map_or(1.0, |&top| mask.of(top));
+        let shares: Vec<f64> = weights.iter().map(|weight| weight * factor).collect();
+        Some(summed_way(base, b, times, &shares))
+    })?;
+    if !holds_feet {
+        return Ok(mixed);
+    }
+    let secs: Vec<f64> = mixed.grid.times.iter().collect();
+    let weights: Vec<f64> = secs.iter().map(|&secs| weight.at(secs)).collect();
+    let origins = Origins { first_secs: &secs, second_secs: &secs, weights: &weights };
+    Ok(feet::held(&mixed, a, b, &origins, mask).map_or(mixed, |(held, _)| held))
+}
+
+/// The moves that set down both clips' poses at some times, for the second one's weights there; `None` where they stay.
+type Ground<'a> = &'a dyn Fn(&Clip, &[f64], &[f64]) -> Option<Vec<[GroundMove; 2]>>;
+
+fn mix_on_ground(
+    a: &Clip,
+    b: &Clip,
+    weight: &MixAlong,
+    mask: &Mask,
+    ground: Ground<'_>,
+) -> Result<Clip, BlendError> {
     weight.check()?;
     frames::check_frames(a)?;
     frames::check_frames(b)?;
@@ -94,33 +127,46 @@ pub fn mix(a: &Clip, b: &Clip, weight: &MixAlong, mask: &Mask) -> Result<Clip, B
     let base = if is_shorter { clip::cut(a, 0.0, end) } else { a.clone() };
     let times: Vec<f64> = base.grid.times.iter().collect();
     let weights: Vec<f64> = times.iter().map(|&secs| weight.at(secs)).collect();
+    if weights.iter().all(|&weight| weight == 0.0) {
+        return Ok(base);
+    }
+    let ground = ground(&base, &times, &weights);
+    let tops = if ground.is_some() { tops_of(a, b) } else { BTreeSet::new() };
     let joints = (0..base.joints.len()).map(|joint| {
         let factor = mask.of(joint);
         let [turns, moves, sizes] = said(&base, b, joint);
         let is_same = Arc::ptr_eq(&a.joints[joint], &b.joints[joint]);
-        if factor == 0.0
-            || is_same
-            || weights.iter().all(|&weight| weight == 0.0)
-            || !(turns || moves || sizes)
-        {
+        let onto = ground.as_ref().filter(|_| tops.contains(&joint));
+        // Whether the first clip's own numbers go elsewhere at a frame, or at any.
+        let is_moved = |frame: usize| onto.is_some_and(|moves| moves[frame][0] != GroundMove::default());
+        let is_led = (0..times.len()).any(is_moved);
+        if (factor == 0.0 && !is_led) || is_same || !(turns || moves || sizes || is_led) {
             return base.joints[joint].clone();
         }
         let share = |frame: usize| weights[frame] * factor;
+        let is_set_down = onto.is_some();
+        let mut both_turns =
+            (turns || is_set_down).then(|| [&base, b].map(|clip| clip.rotations_at(joint, &times)));
+        let mut both_places =
+            (moves || is_set_down).then(|| [&base, b].map(|clip| frames::places(clip, joint, &times)));
+        if let (Some(onto), Some(turns), Some(places)) = (onto, &mut both_turns, &mut both_places) {
+            let (above, still) = (frame_above(a, joint), GroundMove::default());
+            for (clip, (turns, places)) in turns.iter_mut().zip(places).enumerate() {
+                for (frame, moves) in onto.iter().enumerate().filter(|(_, moves)| moves[clip] != still) {
+                    (turns[frame], places[frame]) = set_down(moves[clip], above, turns[frame], places[frame]);
+                }
+            }
+        }
         let row = Row {
-            rotations: turns.then(|| {
-                let own = base.rotations_at(joint, &times);
-                between(&own, &b.rotations_at(joint, &times), &share)
-            }),
-            translations: moves.then(|| {
-                lines(&frames::places(&base, joint, &times), &frames::places(b, joint, &times), &share)
-            }),
+            rotations: both_turns.map(|[own, other]| between(&own, &other, &share)),
+            translations: both_places.map(|[own, other]| lines(&own, &other, &share)),
             scales: sizes.then(|| {
                 lines(&frames::sizes(&base, joint, &times), &frames::sizes(b, joint, &times), &share)
             }),
         };
         // Where keys stand on frames, the ones that nothing is mixed into keep their numbers.
         let on_frames = base.rotation(joint).is_none_or(|track| track.times == base.grid.times);
-        let kept = |frame: usize| (on_frames && share(frame) == 0.0).then_some(frame);
+        let kept = |frame: usize| (on_frames && share(frame) == 0.0 && !is_moved(frame)).then_some(frame);
         Arc::new(frames::tracks(&base.joints[joint], &base.grid.times, row, &kept))
     });
     let joints = joints.collect();
@@ -182,16 +228,18 @@ pub(super) fn lines(a: &[DVec3], b: &[DVec3], share: &dyn Fn(usize) -> f64) -> V
     a.iter().zip(b).enumerate().map(one).collect()
 }
 
-/// How two clips are mixed in step.
+/// How two clips are mixed, frame by frame or in step.
 #[derive(Clone, Debug, PartialEq)]
-pub struct AlignedMix {
+pub struct MixHow {
     /// The second clip's weight over the first's time.
     pub weight: MixAlong,
     /// Factors for joints.
     pub mask: Mask,
     /// Whose way over the ground is taken.
     pub root: RootFrom,
-    /// Whether feet that stand in both clips, or in the weightier one, are held where they stand in the mix.
+    /// Whether feet that stand in both clips, or in the weightier one, are held where they stand in the mix: from where the clips that have
+    /// a foot on the ground weigh more than half together. Frames that are one clip's alone change only where a foot stands on from
+    /// them into mixed ones, and for 0.15 s beside such a stand.
     pub holds_feet: bool,
 }
 
@@ -203,10 +251,10 @@ pub struct AlignedMix {
 ///
 /// # Errors
 /// When a weight is not within 0 and 1 or a clip has no frames.
-pub fn mix_aligned(a: &Clip, b: &Clip, along: &Registration, how: &AlignedMix) -> Result<Clip, BlendError> {
+pub fn mix_aligned(a: &Clip, b: &Clip, along: &Registration, how: &MixHow) -> Result<Clip, BlendError> {
     frames::check_frames(a)?;
     frames::check_frames(b)?;
-    let AlignedMix { weight, mask, root, holds_feet } = how;
+    let MixHow { weight, mask, root, holds_feet } = how;
     weight.check()?;
     if weight.only() == Some(0.0) {
         return Ok(a.clone());
@@ -218,7 +266,7 @@ pub fn mix_aligned(a: &Clip, b: &Clip, along: &Registration, how: &AlignedMix) -
         stops.iter().map(|stop| stop.second_secs).collect(),
     ];
     let weights: Vec<f64> = own_secs.iter().map(|&secs| weight.at(secs)).collect();
-    let tops = tops(a).into_iter().chain(tops(b)).collect::<std::collections::BTreeSet<usize>>();
+    let tops = tops_of(a, b);
     let centre = centre(a);
     let ground_weight = |frame: usize| match root {
         RootFrom::Both => weights[frame] * tops.first().map_or(1.0, |&top| mask.of(top)),
@@ -265,6 +313,11 @@ pub fn mix_aligned(a: &Clip, b: &Clip, along: &Registration, how: &AlignedMix) -
     Ok(held.map_or(mixed, |(held, _)| held))
 }
 
+/// The joints that carry the whole motion of either clip.
+fn tops_of(a: &Clip, b: &Clip) -> BTreeSet<usize> {
+    tops(a).into_iter().chain(tops(b)).collect()
+}
+
 /// A top joint's local turn and place after a move of the scene.
 pub(super) fn set_down(
     place: GroundMove,
@@ -300,7 +353,7 @@ pub(super) fn centre(clip: &Clip) -> usize {
 }
 
 /// Where the body's centre stands at each time.
-fn path_of(clip: &Clip, centre: usize, secs: &[f64]) -> Vec<DVec3> {
+pub(super) fn path_of(clip: &Clip, centre: usize, secs: &[f64]) -> Vec<DVec3> {
     const ROWS: usize = 256;
     let chunk = |part: &[f64]| {
         let worlds = clip.worlds_at(part);
@@ -310,7 +363,7 @@ fn path_of(clip: &Clip, centre: usize, secs: &[f64]) -> Vec<DVec3> {
 }
 
 /// For each frame the moves that set down the first clip's pose and the second's.
-fn ground_moves(
+pub(super) fn ground_moves(
     own: &[DVec3],
     other: &[DVec3],
     stops: &[super::registration::Stop],
@@ -335,55 +388,4 @@ fn ground_moves(
         moves.push([place(drift, own[frame]), place(drift + stops[frame].turn_rad, other[frame])]);
     }
     moves
-}
-
-/// The mean of many clips, frame by frame at the first clip's frames up to the shortest end: the geodesic mean of each
-/// joint's turns (Karcher 1977), the weighted mean of places and sizes. The order of clips does not matter but for the rate.
-///
-/// # Errors
-/// When there is no clip, a weight is negative, all are 0, or a clip has no frames.
-pub fn mix_many(clips: &[(&Clip, f64)]) -> Result<Clip, BlendError> {
-    let Some(&(first, _)) = clips.first() else { return Err(BlendError::NoFrames(String::new())) };
-    let sum: f64 = clips.iter().map(|&(_, weight)| weight).sum();
-    if let Some(&(_, found)) = clips.iter().find(|(_, weight)| *weight < 0.0 || !weight.is_finite()) {
-        return Err(BlendError::Weight { expected: "of at least 0", found });
-    }
-    if sum <= 0.0 {
-        return Err(BlendError::Weight { expected: "above 0 for at least one clip", found: sum });
-    }
-    for (clip, _) in clips {
-        frames::check_frames(clip)?;
-    }
-    let end = clips.iter().map(|(clip, _)| clip.duration_secs).fold(f64::INFINITY, f64::min);
-    let base = if end < first.duration_secs { clip::cut(first, 0.0, end) } else { first.clone() };
-    let times: Vec<f64> = base.grid.times.iter().collect();
-    let joints = (0..base.joints.len()).map(|joint| {
-        let says = |part: usize| clips.iter().any(|(clip, _)| frames::says(clip, joint)[part]);
-        let sampled = |of: &dyn Fn(&Clip) -> Vec<DVec3>| {
-            let all: Vec<Vec<DVec3>> = clips.iter().map(|(clip, _)| of(clip)).collect();
-            let mean = |frame: usize| {
-                let parts = all.iter().zip(clips).map(|(row, (_, weight))| row[frame] * (weight / sum));
-                parts.sum::<DVec3>()
-            };
-            (0..times.len()).map(mean).collect::<Vec<DVec3>>()
-        };
-        let turns = says(0).then(|| {
-            let all: Vec<Vec<Rotor>> =
-                clips.iter().map(|(clip, _)| clip.rotations_at(joint, &times)).collect();
-            let mean = |frame: usize| {
-                let weighted: Vec<(Rotor, f64)> =
-                    all.iter().zip(clips).map(|(row, (_, weight))| (row[frame], weight / sum)).collect();
-                geodesic_mean(&weighted).unwrap_or(all[0][frame])
-            };
-            (0..times.len()).map(mean).collect::<Vec<Rotor>>()
-        });
-        let row = Row {
-            rotations: turns,
-            translations: says(1).then(|| sampled(&|clip| frames::places(clip, joint, &times))),
-            scales: says(2).then(|| sampled(&|clip| frames::sizes(clip, joint, &times))),
-        };
-        Arc::new(frames::tracks(&base.joints[joint], &base.grid.times, row, &|_| None))
-    });
-    let joints = joints.collect();
-    Ok(frames::clip_of(&base, base.grid.times.clone(), joints))
 }

@@ -118,7 +118,7 @@ fn around(path: &WarpPath, stride: usize, rows: usize, columns: usize) -> Band {
     band
 }
 
-fn unrolled(turns: impl Iterator<Item = f64>) -> Vec<f64> {
+pub(super) fn unrolled(turns: impl Iterator<Item = f64>) -> Vec<f64> {
     let mut last: Option<f64> = None;
     turns
         .map(|turn| {

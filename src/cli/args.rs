@@ -4,7 +4,7 @@ use std::path::PathBuf;
 
 use clap::{Args, Parser, Subcommand, ValueEnum};
 
-use crate::blend::{MixAlong, Reference, Side};
+use crate::blend::{MixAlong, Reference, RootFrom, Side};
 use crate::clip::PathKind;
 use crate::exchange::OpenOptions;
 use crate::exchange::csv::{CsvOptions, NamedColumns, TimeUnit};
@@ -131,15 +131,15 @@ pub(super) struct MendArgs {
 /// The result has the first clip's skeleton, rate and file. Exported curves that drive a machine need that machine's
 /// own limits and guarding, local safety codes and a licensed or qualified person.
 #[derive(Debug, Args)]
-#[command(group = clap::ArgGroup::new("how").required(true).args(["join", "mix", "add"]))]
+#[command(group = clap::ArgGroup::new("how").required(true).args(["join", "mix", "add", "mean"]))]
 #[expect(clippy::struct_excessive_bools, reason = "switches as they are typed")]
 pub(super) struct BlendArgs {
     /// First clip
     #[arg(value_name = "A")]
     pub(super) first: String,
-    /// Second clip
-    #[arg(value_name = "B")]
-    pub(super) second: String,
+    /// Second clip; with --mean as many as there are
+    #[arg(value_name = "B", required = true)]
+    pub(super) others: Vec<String>,
     /// File to write; its extension gives the format
     #[arg(short, long, value_name = "OUT")]
     pub(super) output: PathBuf,
@@ -153,23 +153,30 @@ pub(super) struct BlendArgs {
     /// What B does beyond its first frame laid over A, so many times
     #[arg(long, value_name = "W", allow_negative_numbers = true)]
     pub(super) add: Option<f64>,
+    /// The mean of A and all B, frame by frame up to the shortest end: a weight for A and one for each B, such as 1,1,2; only
+    /// their ratio matters
+    #[arg(long, value_name = "W,…", value_delimiter = ',')]
+    pub(super) mean: Option<Vec<f64>>,
     /// With --join: overlap where the poses of both are nearest, not the end of A and the start of B
-    #[arg(long, requires = "join", conflicts_with_all = ["mix", "add"])]
+    #[arg(long, requires = "join", conflicts_with_all = ["mix", "add", "mean"])]
     pub(super) find_place: bool,
     /// With --add: what the difference of B is taken from
-    #[arg(long, value_enum, value_name = "first|rest|mean", default_value_t, conflicts_with_all = ["join", "mix"])]
+    #[arg(long, value_enum, value_name = "first|rest|mean", default_value_t, conflicts_with_all = ["join", "mix", "mean"])]
     pub(super) reference: ReferenceName,
     /// With --add: whether it is composed in the joint's own frame or in its parent's
-    #[arg(long, value_enum, value_name = "body|parent", default_value_t, conflicts_with_all = ["join", "mix"])]
+    #[arg(long, value_enum, value_name = "body|parent", default_value_t, conflicts_with_all = ["join", "mix", "mean"])]
     pub(super) side: SideName,
     /// With --mix: bring steps into time with each other, and B onto A's ground
-    #[arg(long, requires = "mix", conflicts_with_all = ["join", "add"])]
+    #[arg(long, requires = "mix", conflicts_with_all = ["join", "add", "mean"])]
     pub(super) align: bool,
+    /// With --mix: whose path and heading on the ground is taken
+    #[arg(long, value_enum, value_name = "both|a|b", default_value_t, conflicts_with_all = ["join", "add", "mean"])]
+    pub(super) root: RootName,
     /// With --mix alone: hold feet where they stand, as --align and --join do; the mix is then no longer frame by frame in the legs
-    #[arg(long, requires = "mix", conflicts_with_all = ["join", "add"])]
+    #[arg(long, requires = "mix", conflicts_with_all = ["join", "add", "mean"])]
     pub(super) plant_feet: bool,
     /// With --align or --join: leave feet as they come out
-    #[arg(long, conflicts_with_all = ["plant_feet", "add"])]
+    #[arg(long, conflicts_with_all = ["plant_feet", "add", "mean"])]
     pub(super) no_plant_feet: bool,
     /// Reach these joints only; all others follow A
     #[arg(long, value_name = "J,…", value_delimiter = ',')]
@@ -473,6 +480,29 @@ impl SideName {
         match self {
             Self::Body => Side::Body,
             Self::Parent => Side::Parent,
+        }
+    }
+}
+
+/// Whose way on the ground a mix takes, as typed.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, ValueEnum)]
+pub(super) enum RootName {
+    /// Both, by the weight
+    #[default]
+    Both,
+    /// The first clip's
+    A,
+    /// The second clip's
+    B,
+}
+
+impl RootName {
+    /// For the blend.
+    pub(super) const fn root(self) -> RootFrom {
+        match self {
+            Self::Both => RootFrom::Both,
+            Self::A => RootFrom::First,
+            Self::B => RootFrom::Second,
         }
     }
 }

@@ -1,12 +1,13 @@
 //! From source clip to result: pass by pass, with what has not changed kept from the last time.
 
+use std::collections::BTreeMap;
 use std::sync::Arc;
 
 use crate::clip::Clip;
 use crate::mend;
 use crate::skeleton::Skeleton;
 
-use super::pass::{Need, Others, Pass, PassId};
+use super::pass::{Need, Others, Pass, PassId, PassMemory};
 
 /// What one pass did.
 #[derive(Clone, Debug)]
@@ -71,6 +72,7 @@ type Run = (Pass, Vec<Given>);
 #[derive(Debug, Default)]
 pub struct Evaluator {
     last: Option<(Vec<Run>, Evaluation)>,
+    memories: BTreeMap<PassId, PassMemory>,
 }
 
 impl Evaluator {
@@ -96,8 +98,10 @@ impl Evaluator {
         };
         for (pass, _) in &on[stages.len()..] {
             let before = stages.last().map_or(source, |stage| &stage.result).clone();
-            stages.push(run(pass, &before, others));
+            let memory = self.memories.entry(pass.id).or_default();
+            stages.push(run(pass, &before, others, memory));
         }
+        self.memories.retain(|id, _| on.iter().any(|(pass, _)| pass.id == *id));
         let result = stages.last().map_or(source, |stage| &stage.result).clone();
         let evaluation = Evaluation { source: source.clone(), result, stages };
         self.last = Some((on, evaluation.clone()));
@@ -105,8 +109,8 @@ impl Evaluator {
     }
 }
 
-fn run(pass: &Pass, before: &Arc<Clip>, others: &dyn Others) -> Stage {
-    let outcome = match pass.step.kind().apply(before, others) {
+fn run(pass: &Pass, before: &Arc<Clip>, others: &dyn Others, memory: &mut PassMemory) -> Stage {
+    let outcome = match pass.step.kind().apply_again(before, others, memory) {
         Ok(outcome) => outcome,
         Err(error) => {
             return Stage {

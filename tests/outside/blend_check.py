@@ -1,4 +1,5 @@
-"""Compares what `turnwright blend` writes with scipy's slerp, powers of rotations and straight lines.
+"""Compares what `turnwright blend` writes with scipy's slerp, means, powers of rotations and straight lines, and the place that a join sets
+down at with that of scipy's minimiser.
 
 usage: blend_check.py TURNWRIGHT FIRST.bvh SECOND.bvh   (two takes of one skeleton)
 
@@ -12,6 +13,7 @@ import sys
 import tempfile
 
 import numpy as np
+from scipy.optimize import least_squares
 from scipy.spatial.transform import Rotation, Slerp
 
 from bvh_check import locals_of, read
@@ -105,6 +107,34 @@ def main():
                         worst[1] = max(worst[1], float(np.abs(place - own_place).max()))
             failed |= tell(name, worst)
 
+        # The mean of three clips: the third is a later part of the first.
+        third_path = os.path.join(folder, "third.bvh")
+        subprocess.run([program, "convert", first_path, "--from", "0.5", "-o", third_path], check=True, capture_output=True)
+        third = read(third_path)
+        for weights in ([1, 1, 1], [0.2, 0.5, 0.3], [3, 0, 1]):
+            command = [program, "blend", first_path, second_path, third_path, "-o", out]
+            subprocess.run([*command, "--mean", ",".join(map(str, weights))], check=True, capture_output=True)
+            made = read(out)
+            os.remove(out)
+            until = min(end, third[1] * (len(third[2]) - 1))
+            share = np.array(weights) / sum(weights)
+            worst, spread = [0.0, 0.0], 0.0
+            for probe in probes:
+                frame = int(probe * until / step + 1e-6)
+                rows = zip(*(local_at(clip, frame * step) for clip in (first, second, third)))
+                for joint, given, (own_turn, own_place) in zip(made[0], rows, locals_of(made[0], made[2][frame])):
+                    turns = Rotation.concatenate([turn for turn, _ in given])
+                    chordal, mean = turns.mean(share), karcher(turns, share)
+                    worst[0] = max(worst[0], apart(mean, own_turn))
+                    spread = max(spread, apart(chordal, mean))
+                    # Of all turns the mean is nearest: no farther than scipy's own, which minimises chords.
+                    if squares(turns, share, own_turn) > squares(turns, share, chordal) + 1e-9:
+                        worst[0] = np.inf
+                    if len(joint["channels"]) == 6:
+                        place = sum(part * at for part, (_, at) in zip(share, given))
+                        worst[1] = max(worst[1], float(np.abs(place - own_place).max()))
+            failed |= tell(f"mean {weights} (chordal up to {spread:.2f} degrees away)", worst)
+
         # A join: the first clip, then the second set down elsewhere, and between them slerp with a smooth step.
         overlap = 0.5
         made = run(["--join", str(overlap), "--no-plant-feet"])
@@ -132,8 +162,61 @@ def main():
             axis = turned.as_rotvec(degrees=True)
             worst[0] = max(worst[0], float(np.hypot(axis[0], axis[2])))
             worst[1] = max(worst[1], float(np.abs(shift - set_down[0][1]).max()) / 50, abs(float(shift[1])))
-        failed |= tell("join", worst)
+        turn, shift = best_move(first, second, start, overlap)
+        worst[0] = max(worst[0], apart(set_down[0][0], turn))
+        worst[1] = max(worst[1], float(np.abs(shift - set_down[0][1]).max()) / 50)
+        failed |= tell("join, set down as the minimiser does", worst)
     sys.exit(1 if failed else 0)
+
+
+def karcher(turns, share):
+    """The mean of least squared angles, from scipy's chordal one on."""
+    mean = turns.mean(share)
+    for _ in range(200):
+        step = share @ (mean.inv() * turns).as_rotvec()
+        mean = mean * Rotation.from_rotvec(step)
+        if np.linalg.norm(step) < 1e-14:
+            break
+    return mean
+
+
+def squares(turns, share, at):
+    return float(share @ (at.inv() * turns).magnitude() ** 2)
+
+
+def places_at(clip, time, skeleton):
+    """Where joints are with the limbs of another take's skeleton: a second clip comes onto the first one's."""
+    world = []
+    for joint, (turn, place) in zip(skeleton, local_at(clip, time)):
+        if joint["parent"] is not None:
+            place = joint["offset"]
+            up_turn, up_place = world[joint["parent"]]
+            turn, place = up_turn * turn, up_place + up_turn.apply(place)
+        world.append((turn, place))
+    return np.array([place for _, place in world])
+
+
+def best_move(first, second, start, overlap):
+    """The turn about the vertical and the shift that bring the second clip's overlap nearest to the first's, by scipy's minimiser."""
+    joints, step, _ = first
+    lengths = [0.0 if joint["parent"] is None else float(np.linalg.norm(joint["offset"])) for joint in joints]
+    parents = {joint["parent"] for joint in joints}
+    weights = np.array([length if index in parents else 2 * length for index, length in enumerate(lengths)])
+    chosen = np.sort(np.argsort(-weights, kind="stable")[:24])
+    weights = weights[chosen]
+    count = round(overlap / step) + 1
+    at = [overlap * frame / (count - 1) for frame in range(count)]
+    own = np.concatenate([places_at(first, start + secs, joints)[chosen] for secs in at])
+    other = np.concatenate([places_at(second, secs, joints)[chosen] for secs in at])
+    roots = np.sqrt(np.tile(weights / weights.sum(), count))[:, None]
+
+    def residuals(place):
+        turn = Rotation.from_euler("y", place[0])
+        return (roots * (own - turn.apply(other) - [place[1], 0.0, place[2]])).ravel()
+
+    tries = [least_squares(residuals, [begin, 0, 0], jac="3-point", xtol=1e-15, ftol=1e-15, gtol=1e-15) for begin in (-2, 0, 2)]
+    turn, x, z = min(tries, key=lambda found: found.cost).x
+    return Rotation.from_euler("y", turn), np.array([x, 0.0, z])
 
 
 def curve(knots):

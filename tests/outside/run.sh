@@ -30,6 +30,13 @@ fi
 echo "-- blends as scipy works them out"
 "$python" tests/outside/blend_check.py "$program" "$data"/bvh/cmu_02_01_walk.bvh "$data"/bvh/cmu_05_06_dance.bvh
 
+# Written by the test suite from real pairs.
+exported=(target/tmp/blend-export/*.json)
+if [ -e "${exported[0]}" ]; then
+    echo "-- alignment as scipy's minimiser and a plain table find it"
+    "$python" tests/outside/alignment_check.py "${exported[@]}"
+fi
+
 echo "-- every file mended and written; what is written reads back and is valid"
 for file in "$data"/gltf/*.gl* "$data"/gltf/assetgen/*.gltf; do
     name=$(basename "$file")

@@ -870,6 +870,64 @@ fn blends_take_curves_and_carry_other_bodies_over() {
 }
 
 #[test]
+fn a_blend_of_many_takes_a_weight_for_each_and_a_mix_the_way_that_was_asked_for() {
+    let bench = Bench::new();
+    bench.run("convert clean-deckhand.bvh --from 0.3 -o later.bvh").expect(0);
+    let many = "blend clean-deckhand.bvh deckhand.bvh later.bvh";
+    let run = bench.run(&format!("{many} --mean 1,1,2 -o many.bvh")).expect(0);
+    assert_eq!(run.stderr.matches(" s and ").count(), 2, "{}", run.stderr);
+    // Only the ratio matters.
+    bench.run(&format!("{many} --mean 0.25,0.25,0.5 -o same.bvh")).expect(0);
+    assert_eq!(bench.read("many.bvh"), bench.read("same.bvh"));
+    bench.run(&format!("{many} --mean 2,1,1 -o other.bvh")).expect(0);
+    assert_ne!(bench.read("many.bvh"), bench.read("other.bvh"));
+    // No weight but the first's: the first clip, as text.
+    bench.run("blend clean-deckhand.bvh deckhand.bvh --mean 1,0 -o first.bvh").expect(0);
+    assert_eq!(bench.read("first.bvh"), bench.read("clean-deckhand.bvh"));
+    for (arguments, words) in [
+        ("--mean 1,1", "--mean: expected 3 weights, one for A and one for each B, found 2"),
+        ("--mix 0.5", "B: expected one clip with --join, --mix and --add, found 2; use --mean"),
+        ("--mean 0,0,0", "above 0 for at least one clip, found 0"),
+        ("--mean 1,-1,1", "of at least 0, found -1"),
+        ("--mean 1,1,1 --root a", "--root"),
+        ("--mean 1,1,1 --mix 0.5", "--mix"),
+        ("--mean 1,1,1 --align", "--align"),
+    ] {
+        let error = bench.run(&format!("{many} {arguments} -o no.bvh")).expect(2);
+        assert!(error.stderr.contains(words), "{arguments}: {}", error.stderr);
+    }
+
+    let (Some(walk), Some(dance)) =
+        (shared("data/bvh/cmu_02_01_walk.bvh"), shared("data/bvh/cmu_05_06_dance.bvh"))
+    else {
+        return;
+    };
+    bench.copy(&walk, "walk.bvh");
+    bench.copy(&dance, "dance.bvh");
+    let first_row = |name: &str| -> Vec<f64> {
+        let text = bench.text(name);
+        let (_, motion) = text.split_once("Frame Time:").unwrap();
+        motion.lines().nth(200).unwrap().split_whitespace().map(|word| word.parse().unwrap()).collect()
+    };
+    for root in ["both", "a", "b"] {
+        bench.run(&format!("blend walk.bvh dance.bvh --mix 0.5 --root {root} -o {root}.bvh")).expect(0);
+    }
+    let [both, a, b, walk, dance] = ["both.bvh", "a.bvh", "b.bvh", "walk.bvh", "dance.bvh"].map(first_row);
+    // The root's place along x and z; its height is mixed whoever's way it goes.
+    // The two files' frames lie a few microseconds apart.
+    for at in [0, 2] {
+        assert!(
+            (a[at] - walk[at]).abs() < 0.01 && (b[at] - dance[at]).abs() < 0.01,
+            "{:?} {:?}",
+            &a[..3],
+            &b[..3]
+        );
+        assert!((both[at] - f64::midpoint(walk[at], dance[at])).abs() < 0.01, "{:?}", &both[..3]);
+    }
+    assert!((a[1] - both[1]).abs() < 1e-4 && (b[1] - both[1]).abs() < 1e-4, "{:?} {:?}", &a[..3], &b[..3]);
+}
+
+#[test]
 fn a_loop_is_found_closed_and_repeated() {
     let bench = Bench::new();
     let frames = |name: &str| -> usize {

@@ -2,13 +2,14 @@
 
 use std::path::PathBuf;
 
+use egui::accesskit::Role;
 use egui::{Key, Modifiers, Pos2};
 use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
 use turnwright::app::commands::{Action, BlendCommand, Command};
 use turnwright::app::view_models::BlendKind;
 use turnwright::app::{Start, Window};
-use turnwright::blend::JoinPlace;
+use turnwright::blend::{JoinPlace, RootFrom};
 use turnwright::exchange::ClipAddress;
 use turnwright::scene::{BlendForm, BlendPass, ClipRef, LoopPass, PassStep};
 
@@ -199,6 +200,19 @@ fn a_weight_becomes_a_curve_and_its_knots_obey_pointer_and_keys() {
     bench.run();
     assert_eq!(weight(&bench).len(), 2);
     assert_eq!(bench.steps(), steps + 2);
+
+    // Whose way on the ground: a choice of every mix.
+    for (label, root) in [("B", RootFrom::Second), ("A", RootFrom::First), ("both", RootFrom::Both)] {
+        bench.0.get_by_role_and_label(Role::RadioButton, label).scroll_to_me();
+        bench.run();
+        bench.0.get_by_role_and_label(Role::RadioButton, label).click();
+        bench.run();
+        let form = bench.blend().form;
+        assert!(
+            matches!(form, BlendForm::Mix { root: own, is_aligned: false, .. } if own == root),
+            "{label}: {form:?}"
+        );
+    }
 
     // In step, the result has a length between both.
     bench.click("In step");

@@ -4,6 +4,9 @@
 //! |---|---|
 //! | `batch` | the bulk kernels: against 50-digit values, against the functions for one rotor, same bits at every level |
 //! | `blend` | joining, mixing and layering: against scipy's slerp and mean, and clips that were cut or slowed |
+//! | `blend_export` | time and ground alignment of real pairs, written for outsiders to find again |
+//! | `blend_feet` | feet in blends: what slides after against what slides in the two clips, on pairs that stand |
+//! | `blend_pairs` | blends of clips that differ in rate, unit, rest pose or body; whose way is taken; means; seams of loops |
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
 //! | `contacts` | feet: which limbs stand, when, and what holding them comes to |
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
@@ -57,6 +60,9 @@
 //! | `support` | where the outside files are, and comparing with a tolerance; tested by itself only |
 mod batch;
 mod blend;
+mod blend_export;
+mod blend_feet;
+mod blend_pairs;
 mod bvh;
 mod commands;
 mod contacts;

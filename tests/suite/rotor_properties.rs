@@ -9,7 +9,9 @@ use turnwright::rotor::{
     convolve, geodesic_mean, hermite, slerp, slerp_as_signed, squad, squad_inner,
 };
 
-use crate::strategies::{angle, euler_order, same_cases, tiny, two_rotors, two_vectors, unit_rotor, unit_vector};
+use crate::strategies::{
+    angle, euler_order, same_cases, tiny, two_rotors, two_vectors, unit_rotor, unit_vector,
+};
 use crate::support::{Distance, Tally, assert_close};
 
 /// Radians, or parts of 1: some roundings of numbers near 1.

@@ -7,6 +7,7 @@ use std::sync::Arc;
 use glam::DVec3;
 
 use super::topic::Subject;
+use crate::blend::{Mask, MixAlong, mix};
 use crate::clip::{
     Clip, FileAngles, FrameGrid, JointTracks, KeyChange, KeyEdit, PathKind, Paths, Push, PushFrame,
     RotationTrack, Smoothing, Times,
@@ -248,7 +249,9 @@ pub(super) fn example(subject: Subject) -> Example {
         Subject::Limits => plain(of_angles(angle), &LimitsPass::new(Arc::new(limits())), false),
         Subject::Blend | Subject::Retarget => {
             let (one, other) = (of_angles(angle), of_angles(|frame| 0.4 * wave(frame, 0.9) - 0.3));
-            let mixed = crate::blend::mix_many(&[(&one, 0.5), (&other, 0.5)]).unwrap_or_else(|_| one.clone());
+            let mask = Mask::all(&one.skeleton);
+            let half = MixAlong::constant(0.5);
+            let mixed = mix(&one, &other, &half, &mask).unwrap_or_else(|_| one.clone());
             Example { before: Arc::new(one), after: Arc::new(mixed), of_file: None, shows_keys: false }
         }
     }

@@ -122,9 +122,7 @@ fn blend_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
             if response.changed() {
                 keep(id, with_mix(pass, Some(in_step), None), scope);
             }
-            if *is_aligned {
-                root_ui(ui, id, pass, *root, scope);
-            }
+            root_ui(ui, id, pass, *root, scope);
         }
         BlendForm::Add { weight, reference, side } => {
             weight_ui(ui, id, pass, lengths[0], rate, scope);

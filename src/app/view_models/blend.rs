@@ -298,7 +298,7 @@ impl BlendFacts {
     }
 
     /// The two clips at a time of the result: which time of each, and where it is set down. `None` where a clip has no part. In a mix
-    /// in step both are set down on the result, which goes its own way.
+    /// that goes its own way both are set down on the result.
     pub fn poses(&self, form: &BlendForm, result: &Clip, secs: f64) -> [Option<(f64, GroundMove)>; 2] {
         let none = GroundMove::default();
         match form {
@@ -311,6 +311,10 @@ impl BlendFacts {
                 let Some(stop) = self.stop(secs) else { return [None, None] };
                 let onto = |clip: &Clip, at: f64| (at, onto_result(result, secs, clip, at));
                 [Some(onto(&self.first, stop.first_secs)), Some(onto(&self.second, stop.second_secs))]
+            }
+            // The way of the result is not the mean of both.
+            BlendForm::Mix { weight, root, .. } if *root != RootFrom::Both || weight.only().is_none() => {
+                [&self.first, &self.second].map(|clip| Some((secs, onto_result(result, secs, clip, secs))))
             }
             BlendForm::Mix { .. } | BlendForm::Add { .. } => [Some((secs, none)), Some((secs, none))],
         }

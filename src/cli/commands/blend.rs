@@ -1,12 +1,12 @@
-//! `blend`: one clip of two.
+//! `blend`: one clip of two, or of many.
 
 use std::sync::Arc;
 
-use crate::blend::{self, AlignedMix, BlendError, JoinPlace, Mask, MixAlong, RootFrom};
+use crate::blend::{self, BlendError, JoinPlace, Mask, MixAlong, MixHow};
 use crate::cli::DONE;
 use crate::cli::args::BlendArgs;
 use crate::cli::error::CliError;
-use crate::cli::input;
+use crate::cli::input::{self, Input};
 use crate::cli::output::Output;
 use crate::clip::Clip;
 use crate::exchange::{self, Format, Guard};
@@ -17,35 +17,44 @@ pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError>
     Format::of(&args.output)?;
     let options = args.csv.open_options();
     let first = input::open_one(&args.first, &options, output)?;
-    let second = input::open_one(&args.second, &options, output)?;
-    let guard = Guard { inputs: [first.files(), second.files()].concat(), force: args.force };
+    check_counts(args)?;
+    let others = args
+        .others
+        .iter()
+        .map(|other| input::open_one(other, &options, output))
+        .collect::<Result<Vec<Input>, CliError>>()?;
+    let files = std::iter::once(&first).chain(&others).flat_map(Input::files);
+    let guard = Guard { inputs: files.collect(), force: args.force };
     guard.check(&args.output)?;
-    for one in [&first, &second] {
+    for one in std::iter::once(&first).chain(&others) {
         if one.chosen.len() > 1 {
             let label = one.source.clip_label(one.first());
             let text = format!("holds {} clips; took the first, {label}", one.chosen.len());
             output.note(&one.source.path, &text);
         }
     }
-    let second_path = &second.source.path;
-    let carried = |source| CliError::Retarget { path: second_path.clone(), source };
-    let Partner { clip: other, is_carried, notes } =
-        retarget::partner(second.clip(), &first.clip().skeleton).map_err(carried)?;
-    for note in &notes {
-        output.note(second_path, note);
+    let mut clips = Vec::with_capacity(others.len());
+    for other in &others {
+        let path = &other.source.path;
+        let carried = |source| CliError::Retarget { path: path.clone(), source };
+        let Partner { clip, is_carried, notes } =
+            retarget::partner(other.clip(), &first.clip().skeleton).map_err(carried)?;
+        for note in &notes {
+            output.note(path, note);
+        }
+        if is_carried {
+            output.note(path, "to say yourself which joint drives which, use retarget first");
+        }
+        clips.push(clip);
     }
-    if is_carried {
-        output.note(second_path, "to say yourself which joint drives which, use retarget first");
-    }
-    let failed =
-        |source| CliError::Blend { first: first.source.path.clone(), second: second_path.clone(), source };
-    let blended = blended(args, first.clip(), &other).map_err(failed)?;
-    output.say(&format!(
-        "{:.3} s and {:.3} s became {:.3} s",
-        first.clip().duration_secs,
-        second.clip().duration_secs,
-        blended.duration_secs
-    ));
+    let second = others[0].source.path.clone();
+    let failed = |source| CliError::Blend { first: first.source.path.clone(), second, source };
+    let blended = blended(args, first.clip(), &clips).map_err(failed)?;
+    let lengths: Vec<String> = std::iter::once(&first)
+        .chain(&others)
+        .map(|one| format!("{:.3} s", one.clip().duration_secs))
+        .collect();
+    output.say(&format!("{} became {:.3} s", lengths.join(" and "), blended.duration_secs));
     let mut results = first.results.clone();
     results[first.first()] = blended;
     let written = exchange::write(&first.source, &results, Some(first.first()), &args.output, &guard)?;
@@ -54,12 +63,37 @@ pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError>
     Ok(DONE)
 }
 
-fn blended(args: &BlendArgs, a: &Arc<Clip>, b: &Arc<Clip>) -> Result<Arc<Clip>, BlendError> {
+/// Whether there are as many clips and weights as the form takes.
+fn check_counts(args: &BlendArgs) -> Result<(), CliError> {
+    let count = args.others.len();
+    match &args.mean {
+        None if count > 1 => Err(CliError::Argument {
+            place: "B".to_owned(),
+            expected: "one clip with --join, --mix and --add".to_owned(),
+            found: format!("{count}"),
+            advice: "use --mean for the mean of many",
+        }),
+        Some(weights) if weights.len() != count + 1 => Err(CliError::Argument {
+            place: "--mean".to_owned(),
+            expected: format!("{} weights, one for A and one for each B", count + 1),
+            found: format!("{}", weights.len()),
+            advice: "give them in the order of the clips, such as 1,1,2",
+        }),
+        _ => Ok(()),
+    }
+}
+
+fn blended(args: &BlendArgs, a: &Arc<Clip>, others: &[Arc<Clip>]) -> Result<Arc<Clip>, BlendError> {
+    let b = &others[0];
     let mask = match &args.joints {
         Some(labels) => Mask::joints(&a.skeleton, labels)?,
         None => Mask::all(&a.skeleton),
     };
-    let made = if let Some(overlap_secs) = args.join {
+    let made = if let Some(weights) = &args.mean {
+        let clips = std::iter::once(a).chain(others).map(|clip| &**clip);
+        let weighted: Vec<(&Clip, f64)> = clips.zip(weights.iter().copied()).collect();
+        blend::mix_many(&weighted, &mask)?
+    } else if let Some(overlap_secs) = args.join {
         let place = if args.find_place {
             nearest_place(a, b, overlap_secs)?
         } else {
@@ -74,15 +108,13 @@ fn blended(args: &BlendArgs, a: &Arc<Clip>, b: &Arc<Clip>) -> Result<Arc<Clip>, 
         blend::add(a, b, weight, args.reference.reference(), args.side.side(), &mask)?
     } else {
         let weight = args.mix.clone().unwrap_or(MixAlong::constant(0.0));
+        let holds_feet = if args.align { !args.no_plant_feet } else { args.plant_feet };
+        let how = MixHow { weight, mask, root: args.root.root(), holds_feet };
         if args.align {
             let along = blend::align(a, b)?;
-            let holds_feet = !args.no_plant_feet;
-            let how = AlignedMix { weight, mask, root: RootFrom::Both, holds_feet };
             blend::mix_aligned(a, b, &along, &how)?
-        } else if args.plant_feet {
-            blend::mix_on_feet(a, b, &weight, &mask)?
         } else {
-            blend::mix(a, b, &weight, &mask)?
+            blend::mix_by(a, b, &how)?
         }
     };
     Ok(Arc::new(made))

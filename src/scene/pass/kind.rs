@@ -5,6 +5,7 @@ use std::sync::Arc;
 use crate::clip::Clip;
 use crate::skeleton::Skeleton;
 
+use super::blend::Pair;
 use super::error::PassError;
 use super::others::{Need, Others};
 use super::scope::Scope;
@@ -24,6 +25,13 @@ impl From<Clip> for Outcome {
     }
 }
 
+/// What one run of a pass has worked out and the next can use, with other parameters on the same clips: while a weight is dragged
+/// two long clips need not be aligned anew for each frame. It changes no result.
+#[derive(Clone, Debug, Default)]
+pub struct PassMemory {
+    pub(super) pair: Option<Pair>,
+}
+
 /// One kind of pass: its parameters, and what they do to a clip.
 ///
 /// A pass stays valid when passes before it change: it speaks of joints and seconds, not of keys, wherever it can, and
@@ -41,6 +49,19 @@ pub trait PassKind {
     /// # Errors
     /// When the pass does not fit the clip (a scene whose source has changed).
     fn apply(&self, clip: &Arc<Clip>, others: &dyn Others) -> Result<Outcome, PassError>;
+
+    /// As [`PassKind::apply`], with what an earlier run of this pass has left in `memory`.
+    ///
+    /// # Errors
+    /// As there.
+    fn apply_again(
+        &self,
+        clip: &Arc<Clip>,
+        others: &dyn Others,
+        _memory: &mut PassMemory,
+    ) -> Result<Outcome, PassError> {
+        self.apply(clip, others)
+    }
 
     /// Numbers of the joints it names, of the skeleton it is applied to; a joint may come several times.
     fn joints(&self) -> Vec<usize> {

@@ -18,7 +18,7 @@ mod smooth;
 pub use blend::{BlendForm, BlendPass};
 pub use error::PassError;
 pub use keys::KeysPass;
-pub use kind::{Outcome, PassKind};
+pub use kind::{Outcome, PassKind, PassMemory};
 pub use limits::LimitsPass;
 pub use mend::{MendPass, SnagMark};
 pub use others::{ClipRef, Need, NoOthers, Others};
