@@ -25,7 +25,9 @@
 //! | `ground_faults` | seams planted into real loops and slides under real feet: found, closed, held |
 //! | `hostile` | a hundred thousand damaged files of every format: no panic, no hang, no memory beyond the bound |
 //! | `layers` | layers point down only, and the window's libraries stay in `app` |
+//! | `limit_faults` | joints bent beyond their limits with known truth, planted into the real clips |
 //! | `limits` | joint limits: clamps against outside values, what holds for every limit, limits learned; the preset on the real clips |
+//! | `mend_order` | the order in which faults are mended and passes run, however they were accepted |
 //! | `mended_spans` | what mends keep to: rates that meet at borders, the same at any rate and in any unit |
 //! | `path_export` | paths, spacings and meant turns in files, played as each format says |
 //! | `paths` | paths between keys, spacing, meant turns: 50-digit derivatives, scipy, and what holds for every track |
@@ -41,6 +43,7 @@
 //! | `gui_reach` | every control of the window has a name and is reached with the keyboard, at every size and scale |
 //! | `gui_session` | a whole clean-up of a captured dance in a real window, from opening to the exported file |
 //! | `gui_settings` | what is remembered from one run to the next, keys, areas, hints, recent files |
+//! | `gui_snags` | the list of snags by keys and filters, what a scene remembers of it, a long search that is stopped |
 //! | `gui_start` | the real program where no window can open |
 //! | `gui_two` | two clips in the window: the blend lane, its pictures and forms, loops |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
@@ -101,6 +104,8 @@ mod gui_session;
 #[cfg(feature = "gui-tests")]
 mod gui_settings;
 #[cfg(feature = "gui-tests")]
+mod gui_snags;
+#[cfg(feature = "gui-tests")]
 mod gui_space;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
@@ -113,7 +118,9 @@ mod gui_window;
 mod half_turn_sides;
 mod hostile;
 mod layers;
+mod limit_faults;
 mod limits;
+mod mend_order;
 mod mended_spans;
 mod path_export;
 mod paths;
