@@ -4,6 +4,7 @@ mod answers;
 mod blend;
 mod carry;
 mod curves;
+mod export;
 mod files;
 mod limits;
 mod markers;
@@ -88,7 +89,7 @@ impl Window {
             Command::OpenFiles(paths) => self.open_or_ask(Then::Open(paths)),
             Command::OpenTable(path, columns, unit) => self.open_table(path, columns, unit),
             Command::SaveTo(path) => self.save_to(path),
-            Command::ExportTo(path) => self.export_to(path),
+            Command::ExportTo { path, has_proof } => self.export_to(path, has_proof),
             Command::RelocateTo(source, path) => self.relocate_to(source, path),
             Command::ChooseRest(rest) => {
                 if let Some(source) = self.bench.work().map(|work| work.source) {

@@ -6,7 +6,8 @@ use std::sync::Arc;
 use crate::clip::Clip;
 use crate::exchange::{self, ClipAddress, OpenOptions, Source, disk, ron};
 use crate::limit::Limits;
-use crate::scene::{Document, Library, Loaded};
+use crate::proof::{PassFacts, passes_run};
+use crate::scene::{Document, Evaluation, Library, Loaded, Pass, SnagMark};
 
 use super::error::CliError;
 use super::output::Output;
@@ -22,10 +23,30 @@ pub(super) struct Input {
     pub(super) results: Vec<Arc<Clip>>,
     /// The limits that a scene has for each clip of the source.
     pub(super) limits: Vec<Option<Arc<Limits>>>,
+    /// For each clip of the source the work that a scene has for it.
+    pub(super) works: Vec<Option<Work>>,
     /// Indices of the clips that are meant.
     pub(super) chosen: Vec<usize>,
     /// Whether the user named one of several clips.
     pub(super) is_named: bool,
+}
+
+/// What a scene does to one clip.
+#[derive(Debug)]
+pub(super) struct Work {
+    /// Its passes.
+    pub(super) passes: Vec<Pass>,
+    /// What they did.
+    pub(super) evaluation: Evaluation,
+    /// Snags that are left as they are.
+    pub(super) left: Vec<SnagMark>,
+}
+
+impl Work {
+    /// What each pass did, for a sheet.
+    pub(super) fn passes_run(&self) -> Vec<PassFacts> {
+        passes_run(&self.passes, &self.evaluation)
+    }
 }
 
 impl Input {
@@ -109,6 +130,7 @@ fn open_clips(address: &ClipAddress, options: &OpenOptions) -> Result<Input, Cli
         path: address.path.clone(),
         results: source.clips.clone(),
         limits: vec![None; count],
+        works: std::iter::repeat_with(|| None).take(count).collect(),
         source,
         chosen,
         is_named: address.clip.is_some(),
@@ -151,6 +173,7 @@ fn open_scene(
     for (index, source) in sources.into_iter().enumerate() {
         let mut results = source.clips.clone();
         let mut limits = vec![None; results.len()];
+        let mut works: Vec<Option<Work>> = std::iter::repeat_with(|| None).take(results.len()).collect();
         let mut chosen = Vec::new();
         for (work, own) in scene.document.works.iter().enumerate() {
             if own.source != index {
@@ -164,7 +187,8 @@ fn open_scene(
             if Arc::ptr_eq(&evaluation.result.skeleton, &source.clips[own.clip].skeleton) {
                 limits[own.clip].clone_from(&own.limits);
             }
-            results[own.clip] = evaluation.result;
+            results[own.clip] = evaluation.result.clone();
+            works[own.clip] = Some(Work { passes: own.passes.clone(), evaluation, left: own.left.clone() });
             let is_meant = address.clip.as_ref().is_none_or(|wanted| {
                 *wanted == own.name || *wanted == source.clip_label(own.clip) || *wanted == work.to_string()
             });
@@ -174,7 +198,15 @@ fn open_scene(
         }
         if !chosen.is_empty() {
             let is_named = address.clip.is_some();
-            inputs.push(Input { path: address.path.clone(), source, results, limits, chosen, is_named });
+            inputs.push(Input {
+                path: address.path.clone(),
+                source,
+                results,
+                limits,
+                works,
+                chosen,
+                is_named,
+            });
         }
     }
     if inputs.is_empty() {

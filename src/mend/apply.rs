@@ -146,6 +146,29 @@ pub fn change_rad(before: &Clip, after: &Clip, joint: usize) -> f64 {
     change_of_keys_rad(old, new, 0, old.keys.len().saturating_sub(1))
 }
 
+/// The largest turn between `before` and `after` that the mend of `snag` can have made, in radians: of its joint at its keys
+/// and in the middles between; of the whole joint where a loop was closed; of a limb at the frames of its plant.
+pub fn change_at_snag_rad(before: &Clip, after: &Clip, snag: &Snag) -> f64 {
+    let at_frames = |joint: usize| {
+        let (Some(old), Some(new)) = (before.rotation(joint), after.rotation(joint)) else { return 0.0 };
+        let secs = (snag.first_frame..=snag.last_frame).map(|frame| before.grid.time(frame));
+        secs.map(|secs| old.at(secs).turn_to(new.at(secs))).fold(0.0, f64::max)
+    };
+    match &snag.remedy {
+        Remedy::Hold(plant) => {
+            let [upper, lower, end, ..] = plant.foot.joints();
+            [upper, lower, end].map(at_frames).into_iter().fold(0.0, f64::max)
+        }
+        Remedy::CloseLoop(_) => change_rad(before, after, snag.joint),
+        _ => match (before.rotation(snag.joint), after.rotation(snag.joint)) {
+            (Some(old), Some(new)) if old.keys.len() == new.keys.len() => {
+                change_of_keys_rad(old, new, snag.first_key, snag.last_key)
+            }
+            _ => change_rad(before, after, snag.joint),
+        },
+    }
+}
+
 /// The largest turn between two tracks of the same key times, at the keys `first..=last` and in the middles between.
 pub(super) fn change_of_keys_rad(old: &RotationTrack, new: &RotationTrack, first: usize, last: usize) -> f64 {
     let at_keys = (first..=last.min(old.keys.len().saturating_sub(1))).map(|key| old.times.at(key));

@@ -17,7 +17,7 @@ mod survey;
 mod take_out;
 mod tips;
 
-pub use apply::{apply, apply_all, change_rad};
+pub use apply::{apply, apply_all, change_at_snag_rad, change_rad};
 pub use error::MendError;
 pub use loop_close::{LoopOptions, LoopReport, close_loop};
 pub use plant::{Miss, PlantOptions, PlantReport, faded, move_end, plant_feet, plant_feet_at};

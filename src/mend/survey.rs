@@ -13,7 +13,7 @@ use crate::snag::{
     find_past_limit, find_with, preset_limits,
 };
 
-use super::apply::{apply_all, asks_others, change_of_keys_rad, change_rad, mend};
+use super::apply::{apply_all, asks_others, change_at_snag_rad, change_of_keys_rad, mend};
 use super::draft::Draft;
 
 /// What to look for.
@@ -195,31 +195,10 @@ fn of_clip(working: &mut Clip, kind: SnagKind) -> Vec<(Snag, f64)> {
     let snags = find_in_clip(working, kind);
     // What was found in a clip fits it.
     let Ok(mended) = apply_all(working, &snags) else { return Vec::new() };
-    let changed = |snag: &Snag| match &snag.remedy {
-        Remedy::Hold(plant) => {
-            let [upper, lower, end, ..] = plant.foot.joints();
-            let frames = snag.first_frame..=snag.last_frame;
-            [upper, lower, end]
-                .map(|joint| change_at_frames_rad(working, &mended, joint, frames.clone()))
-                .into_iter()
-                .fold(0.0, f64::max)
-        }
-        _ => change_rad(working, &mended, snag.joint),
-    };
+    let changed = |snag: &Snag| change_at_snag_rad(working, &mended, snag);
     let found = snags.iter().map(|snag| (snag.clone(), changed(snag))).collect();
     *working = mended;
     found
-}
-
-fn change_at_frames_rad(
-    before: &Clip,
-    after: &Clip,
-    joint: usize,
-    frames: std::ops::RangeInclusive<usize>,
-) -> f64 {
-    let (Some(old), Some(new)) = (before.rotation(joint), after.rotation(joint)) else { return 0.0 };
-    let secs = frames.map(|frame| before.grid.time(frame));
-    secs.map(|secs| old.at(secs).turn_to(new.at(secs))).fold(0.0, f64::max)
 }
 
 /// A step of stored angles into or out of a half-turn or spike is no long way of its own.

@@ -1,12 +1,13 @@
 //! A clip's part of the sheet, from the two clips alone.
 
-use std::sync::Arc;
+use std::sync::{Arc, LazyLock};
 
 use crate::clip::Clip;
 use crate::limit::{Keeping, Limits};
 use crate::mend;
 use crate::mend::SurveyOptions;
-use crate::snag::{Progress, Snag};
+use crate::scene::SnagMark;
+use crate::snag::{Progress, SnagKind};
 
 use super::curves::joint_curves;
 use super::error::ProofError;
@@ -27,10 +28,30 @@ pub fn compare(
     index: usize,
     progress: &dyn Progress,
 ) -> Result<ClipProof, ProofError> {
-    compare_with(before, after, label, index, None, progress)
+    compare_with(before, after, label, index, &Looked::default(), progress)
 }
 
-/// As [`compare`], with the limits of the clip before, against which both are held too.
+/// What snags are looked for with, and which of them are meant.
+#[derive(Clone, Copy, Debug)]
+pub struct Looked<'a> {
+    /// The kinds.
+    pub kinds: &'a [SnagKind],
+    /// The limits of the clip before, against which both are held.
+    pub limits: Option<&'a Arc<Limits>>,
+    /// Snags of the clip before that a person said are meant.
+    pub meant: &'a [SnagMark],
+}
+
+impl Default for Looked<'_> {
+    fn default() -> Self {
+        Self { kinds: &USUAL, limits: None, meant: &[] }
+    }
+}
+
+/// The kinds that are looked for when none are named.
+static USUAL: LazyLock<Vec<SnagKind>> = LazyLock::new(SnagKind::defaults);
+
+/// As [`compare`], with other kinds than the usual, and limits against which both clips are held too.
 ///
 /// # Errors
 /// As [`compare`].
@@ -39,18 +60,22 @@ pub fn compare_with(
     after: &Clip,
     label: String,
     index: usize,
-    limits: Option<&Arc<Limits>>,
+    looked: &Looked<'_>,
     progress: &dyn Progress,
 ) -> Result<ClipProof, ProofError> {
     let measurement = measure(before, after, progress)?;
+    let limits = looked.limits;
     let limits_after = limits.and_then(|limits| carried_over(limits, before, after)).map(Arc::new);
-    let found = |clip: &Clip, limits: Option<Arc<Limits>>| -> Result<Vec<FoundSnag>, ProofError> {
-        let survey = mend::survey(clip, &SurveyOptions { limits, ..SurveyOptions::default() }, progress)?;
-        let label = |snag: &Snag| clip.skeleton.label(snag.joint);
-        Ok(survey.snags.iter().map(|snag| FoundSnag::new(snag, label(snag), false)).collect())
+    let found = |clip: &Clip, limits: Option<Arc<Limits>>, meant: &[SnagMark]| {
+        let survey = mend::survey(clip, &SurveyOptions { kinds: looked.kinds.to_vec(), limits }, progress)?;
+        let facts = survey.snags.iter().map(|snag| {
+            FoundSnag::new(snag, clip.skeleton.label(snag.joint), meant.contains(&SnagMark::of(snag)))
+        });
+        Ok::<Vec<FoundSnag>, ProofError>(facts.collect())
     };
     let kept = limits.map(|limits| limits_kept(limits, limits_after.as_deref(), before, after));
-    let (found_before, found_after) = (found(before, limits.cloned())?, found(after, limits_after)?);
+    let found_before = found(before, limits.cloned(), looked.meant)?;
+    let found_after = found(after, limits_after, &[])?;
     let mut proof = ClipProof::new(label, index, measurement, found_before, found_after);
     proof.limits = kept;
     Ok(proof)

@@ -5,7 +5,7 @@ use std::collections::BTreeSet;
 use glam::DVec3;
 use rayon::prelude::*;
 
-use crate::clip::{Clip, Times, Worlds};
+use crate::clip::{Clip, RotationTrack, Stored, Times, Worlds};
 use crate::rotor::Rotor;
 use crate::skeleton::Skeleton;
 use crate::snag::Cancelled;
@@ -13,7 +13,7 @@ use crate::snag::Progress;
 
 use super::error::ProofError;
 use super::rates::{Peak, RateMeasure, rates};
-use super::untouched::{changed_turns, same_vectors};
+use super::untouched::{changed_turns, changed_vectors};
 
 /// What changed in one joint's turn relative to its parent.
 #[derive(Clone, Debug, PartialEq)]
@@ -51,6 +51,31 @@ pub struct TipMeasure {
     pub mean: f64,
 }
 
+/// How many joints of a clip hold their turns in which form.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct StoredForms {
+    /// As four numbers.
+    pub rotors: usize,
+    /// As the file's own angles.
+    pub file_angles: usize,
+    /// As plane angles.
+    pub plane_angles: usize,
+}
+
+impl StoredForms {
+    fn of(clip: &Clip) -> Self {
+        let mut forms = Self::default();
+        for track in tracks(clip) {
+            *match track.stored {
+                Stored::Rotors => &mut forms.rotors,
+                Stored::Angles(_) => &mut forms.file_angles,
+                Stored::PlaneAngles(_) => &mut forms.plane_angles,
+            } += 1;
+        }
+        forms
+    }
+}
+
 /// What changed from one clip to another.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Measurement {
@@ -74,6 +99,10 @@ pub struct Measurement {
     pub only_after: Vec<String>,
     /// Frames at which no number changed; `None` where some joint's turns are held in different forms.
     pub frames_untouched: Option<usize>,
+    /// Keys of turns that the two hold, before and after.
+    pub keys: [usize; 2],
+    /// How the files hold turns, before and after.
+    pub stored: [StoredForms; 2],
     /// The largest difference from unit length of any stored rotor, before and after.
     pub off_unit: [f64; 2],
     /// Stored turns that are no numbers, before and after.
@@ -160,6 +189,8 @@ pub fn measure(before: &Clip, after: &Clip, progress: &dyn Progress) -> Result<M
         tips,
         only_before: lone(&before.skeleton, 0),
         only_after: lone(&after.skeleton, 1),
+        keys: [before, after].map(|clip| tracks(clip).map(|track| track.keys.len()).sum()),
+        stored: [before, after].map(StoredForms::of),
         off_unit: [off_unit(before), off_unit(after)],
         not_finite: [not_finite(before), not_finite(after)],
     })
@@ -252,8 +283,10 @@ fn measure_joint(clips: [&Clip; 2], pair: [usize; 2], rests: [[Rotor; 2]; 2], ti
 
     let tracks = [0, 1].map(|side| &clips[side].joints[pair[side]]);
     let keys_changed = changed_turns(tracks[0].rotation.as_ref(), tracks[1].rotation.as_ref());
-    let same_places = same_vectors(tracks[0].translation.as_ref(), tracks[1].translation.as_ref())
-        && same_vectors(tracks[0].scale.as_ref(), tracks[1].scale.as_ref());
+    let is_same = |keys: Option<Vec<usize>>| keys.is_some_and(|keys| keys.is_empty());
+    let same_places =
+        is_same(changed_vectors(tracks[0].translation.as_ref(), tracks[1].translation.as_ref()))
+            && is_same(changed_vectors(tracks[0].scale.as_ref(), tracks[1].scale.as_ref()));
     let rates_of =
         |side: usize| tracks[side].rotation.as_ref().map(|track| rates(track, clips[0])).unwrap_or_default();
     JointMeasure {
@@ -346,22 +379,31 @@ fn frames_untouched(before: &Clip, after: &Clip, joints: &[JointMeasure]) -> Opt
         if let Some(track) = after.rotation(joint.after_joint) {
             touched.extend(keys.iter().map(|&key| after.grid.frame(track.times.at(key))));
         }
-        let tracks = [&before.joints[joint.before_joint], &after.joints[joint.after_joint]];
-        if !same_vectors(tracks[0].translation.as_ref(), tracks[1].translation.as_ref()) {
-            return Some(0);
+        let own = [&before.joints[joint.before_joint], &after.joints[joint.after_joint]];
+        for [old, new] in [own.map(|own| own.translation.as_ref()), own.map(|own| own.scale.as_ref())] {
+            // With other times nothing is where it was.
+            let Some(keys) = changed_vectors(old, new) else { return Some(0) };
+            let times = new.map(|track| &track.times);
+            touched.extend(
+                times
+                    .into_iter()
+                    .flat_map(|times| keys.iter().map(move |&key| after.grid.frame(times.at(key)))),
+            );
         }
     }
     Some(before.grid.count() - touched.len())
 }
 
+/// The tracks of turns, of carriers too: the file holds them.
+fn tracks(clip: &Clip) -> impl Iterator<Item = &RotationTrack> {
+    clip.joints.iter().filter_map(|tracks| tracks.rotation.as_ref())
+}
+
 fn off_unit(clip: &Clip) -> f64 {
-    let keys =
-        clip.joints.iter().filter_map(|tracks| tracks.rotation.as_ref()).flat_map(|track| track.keys.iter());
+    let keys = tracks(clip).flat_map(|track| track.keys.iter());
     keys.filter(|key| key.is_finite()).map(|key| (key.norm() - 1.0).abs()).fold(0.0, f64::max)
 }
 
 fn not_finite(clip: &Clip) -> usize {
-    let keys =
-        clip.joints.iter().filter_map(|tracks| tracks.rotation.as_ref()).flat_map(|track| track.keys.iter());
-    keys.filter(|key| !key.is_finite()).count()
+    tracks(clip).flat_map(|track| track.keys.iter()).filter(|key| !key.is_finite()).count()
 }

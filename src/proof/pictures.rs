@@ -131,7 +131,7 @@ fn moments(clips: [&Clip; 2], measurement: &Measurement) -> Vec<Moment> {
     chosen
         .into_iter()
         .map(|(secs, joint)| Moment {
-            caption: format!("{secs:.2} s  {}", joint.label),
+            caption: format!("{secs:.2} s, frame {}  {}", clips[0].grid.frame(secs), joint.label),
             figures: vec![figure(1, secs, FigureStyle::After), figure(0, secs, FigureStyle::Before)],
         })
         .collect()

@@ -1,10 +1,12 @@
 //! What a proof sheet tells, before it takes a form.
 
+use crate::exchange::Source;
 use crate::limit::Keeping;
 use crate::snag::{Snag, SnagKind};
 
 use super::curves::JointCurves;
 use super::measure::Measurement;
+use super::passes::{MendFacts, PassFacts};
 
 /// The caution that stands on every sheet.
 pub const CAUTION: &str = "Exported curves that drive a machine need that machine's own limits and guarding, local \
@@ -15,8 +17,27 @@ pub const CAUTION: &str = "Exported curves that drive a machine need that machin
 pub struct FileFacts {
     /// Its path as it was given.
     pub file: String,
+    /// Its format: `BVH`.
+    pub format: String,
+    /// Its size in bytes.
+    pub bytes: usize,
+    /// How many clips it holds.
+    pub clips: usize,
     /// SHA-256 of its bytes, hexadecimal.
     pub sha256: String,
+}
+
+impl FileFacts {
+    /// Of a file as it was read.
+    pub fn of(source: &Source) -> Self {
+        Self {
+            file: source.path.display().to_string(),
+            format: source.format.to_string(),
+            bytes: source.bytes().len(),
+            clips: source.clips.len(),
+            sha256: source.sha256().to_owned(),
+        }
+    }
 }
 
 /// A snag that was found, and whether it is still there.
@@ -32,6 +53,14 @@ pub struct FoundSnag {
     pub secs: [f64; 2],
     /// Its size, radians.
     pub size_rad: f64,
+    /// How sure it is a fault, 0 to 1.
+    pub confidence: f64,
+    /// What its mend does, in a word or two.
+    pub mend: &'static str,
+    /// Whether the mend may be made unasked.
+    pub safe: bool,
+    /// Whether a person said it is meant.
+    pub meant: bool,
     /// A plain sentence.
     pub text: String,
     /// Whether the clip after is free of it.
@@ -80,6 +109,8 @@ pub struct ClipProof {
     pub index: usize,
     /// What changed.
     pub measurement: Measurement,
+    /// The passes that ran, in order; empty where nobody knows.
+    pub passes: Vec<PassFacts>,
     /// Snags of the clip before.
     pub found: Vec<FoundSnag>,
     /// Snags of the clip after that were not in the clip before.
@@ -103,19 +134,34 @@ pub struct Sheet {
     pub clips: Vec<ClipProof>,
     /// What the readers of both files told.
     pub notes: Vec<String>,
+    /// The clips after are a scene's results, worked out and not read from a file that was written.
+    pub is_computed: bool,
 }
 
 impl FoundSnag {
-    /// From a snag of a clip whose joints have these labels. `left` are the snags of the clip after.
-    pub fn new(snag: &Snag, label: &str, gone: bool) -> Self {
+    /// From a snag of a joint with this label, not known to be gone.
+    pub fn new(snag: &Snag, label: &str, meant: bool) -> Self {
         Self {
             kind: snag.kind,
             joint: label.to_owned(),
             frames: [snag.first_frame, snag.last_frame],
             secs: [snag.first_secs, snag.last_secs],
             size_rad: snag.size_rad,
+            confidence: snag.confidence,
+            mend: snag.remedy.name(),
+            safe: snag.safe,
+            meant,
             text: snag.text.clone(),
-            gone,
+            gone: false,
+        }
+    }
+
+    /// `gone`, `meant` or `left`, of a snag of the clip before.
+    pub const fn state(&self) -> &'static str {
+        match (self.gone, self.meant) {
+            (true, _) => "gone",
+            (false, true) => "meant",
+            (false, false) => "left",
         }
     }
 
@@ -145,12 +191,30 @@ impl ClipProof {
             label,
             index,
             measurement,
+            passes: Vec::new(),
             found: before,
             new,
             limits: None,
             curves: Vec::new(),
             pictures: Vec::new(),
         }
+    }
+
+    /// How many snags are still there and not meant.
+    pub fn left(&self) -> usize {
+        self.found.iter().filter(|snag| snag.state() == "left").count()
+    }
+
+    /// How many snags are still there and meant.
+    pub fn meant(&self) -> usize {
+        self.found.iter().filter(|snag| snag.state() == "meant").count()
+    }
+
+    /// What was done about a snag of the clip before, where one of the passes mended it.
+    pub fn mend_of(&self, snag: &FoundSnag) -> Option<&MendFacts> {
+        let all = self.passes.iter().flat_map(|pass| &pass.mends);
+        all.into_iter()
+            .find(|mend| mend.kind == snag.kind && mend.joint == snag.joint && mend.frames == snag.frames)
     }
 
     /// How many snags are gone.

@@ -5,9 +5,11 @@ use std::fmt::Write as _;
 use base64::Engine as _;
 
 use crate::limit::{Keeping, adult};
+use crate::scene::PassNumber;
 
 use super::curve_svg::curve_svg;
 use super::measure::{JointMeasure, Measurement};
+use super::passes::PassFacts;
 use super::rates::Peak;
 use super::sheet::{CAUTION, ClipProof, FoundSnag, LimitRow, LimitsProof, Sheet, SheetPicture};
 
@@ -38,17 +40,22 @@ pub fn sheet_html(sheet: &Sheet) -> String {
 }
 
 fn head(page: &mut String, sheet: &Sheet) {
-    let _ = write!(
-        page,
-        "<header>\n<h1>Proof sheet</h1>\n<table class=\"files\">\n<tr><th scope=\"row\">Before</th><td>{}</td><td class=\"hash\" title=\"SHA-256 {}\">{}</td></tr>\n\
-         <tr><th scope=\"row\">After</th><td>{}</td><td class=\"hash\" title=\"SHA-256 {}\">{}</td></tr>\n</table>\n",
-        escape(&sheet.before.file),
-        sheet.before.sha256,
-        short_hash(&sheet.before.sha256),
-        escape(&sheet.after.file),
-        sheet.after.sha256,
-        short_hash(&sheet.after.sha256),
+    page.push_str(
+        "<header>\n<h1>Proof sheet</h1>\n<div class=\"wide\"><table class=\"files\">\n<thead><tr><th></th><th>File</th><th>Format</th>\
+         <th class=\"n\">Bytes</th><th class=\"n\">Clips</th><th>SHA-256</th></tr></thead>\n<tbody>\n",
     );
+    for (which, facts) in [("Before", &sheet.before), ("After", &sheet.after)] {
+        let _ = writeln!(
+            page,
+            "<tr><th scope=\"row\">{which}</th><td>{}</td><td>{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"hash\">{}</td></tr>",
+            escape(&facts.file),
+            escape(&facts.format),
+            whole(facts.bytes as f64),
+            facts.clips,
+            escape(&facts.sha256),
+        );
+    }
+    page.push_str("</tbody>\n</table></div>\n");
     for note in &sheet.notes {
         let _ = writeln!(page, "<p class=\"note\">{}</p>", escape(note));
     }
@@ -61,19 +68,12 @@ fn clip_section(page: &mut String, clip: &ClipProof, is_one_of_several: bool) {
     if is_one_of_several {
         let _ = writeln!(page, "<h2>Clip {}</h2>", escape(&clip.label));
     }
-    let _ = writeln!(
-        page,
-        "<p class=\"facts\">{} · {} joints · {} frames at {} a second · {} s</p>",
-        escape(&clip.label),
-        measurement.joints.len(),
-        measurement.frames,
-        plain(measurement.rate, 3),
-        plain(measurement.durations_secs[0], 3),
-    );
+    came_in(page, clip);
     if let Some(warning) = unlike(measurement) {
         let _ = writeln!(page, "<p class=\"note\">{}</p>", escape(&warning));
     }
     tiles(page, clip);
+    passes(page, &clip.passes);
     snags(page, clip);
     pictures(page, &clip.pictures);
     if !clip.curves.is_empty() {
@@ -93,6 +93,80 @@ fn clip_section(page: &mut String, clip: &ClipProof, is_one_of_several: bool) {
     joints(page, measurement);
     tips(page, measurement);
     page.push_str("</section>\n");
+}
+
+/// What came in, in a line.
+fn came_in(page: &mut String, clip: &ClipProof) {
+    let measurement = &clip.measurement;
+    let forms = &measurement.stored[0];
+    let forms = [
+        (forms.rotors, "as rotors"),
+        (forms.file_angles, "as the file’s own angles"),
+        (forms.plane_angles, "as plane angles"),
+    ];
+    let held: Vec<String> = forms
+        .into_iter()
+        .filter(|(count, _)| *count > 0)
+        .map(|(count, how)| format!("{} {how}", counted(count, "track")))
+        .collect();
+    let _ = writeln!(
+        page,
+        "<p class=\"facts\"><b>{}</b> came in with {}, {} at {} a second ({} s) and {} of turns, {}.</p>",
+        escape(&clip.label),
+        counted(measurement.joints.len() + measurement.only_before.len(), "joint"),
+        counted(measurement.frames, "frame"),
+        plain(measurement.rate, 3),
+        plain(measurement.durations_secs[0], 3),
+        counted(measurement.keys[0], "key"),
+        held.join(", "),
+    );
+}
+
+/// A number of things: `1 joint`, `22 joints`.
+fn counted(count: usize, thing: &str) -> String {
+    format!("{} {thing}{}", whole(count as f64), if count == 1 { "" } else { "s" })
+}
+
+/// Numbers with their names: `cut-off 6 Hz, amount 80 %`.
+fn numbers(numbers: &[PassNumber]) -> String {
+    let words = numbers.iter().map(|number| {
+        let gap = if matches!(number.unit, "" | "°") { "" } else { "\u{a0}" };
+        format!("{} {}{gap}{}", number.name, plain(number.value, 3), number.unit)
+    });
+    words.collect::<Vec<_>>().join(", ")
+}
+
+fn passes(page: &mut String, passes: &[PassFacts]) {
+    if passes.is_empty() {
+        return;
+    }
+    page.push_str(
+        "<h3>Passes that ran</h3>\n<div class=\"wide\"><table>\n<thead><tr><th class=\"n\">No.</th><th>Pass</th><th>Numbers</th>\
+         <th class=\"n\">Joints<br>changed</th><th class=\"n\">Largest<br>change</th><th>What it does</th></tr></thead>\n<tbody>\n",
+    );
+    for (place, pass) in passes.iter().enumerate() {
+        let mut words = vec![pass.explanation.to_owned()];
+        words.extend(pass.notes.iter().map(|note| sentence(note)));
+        words.extend(pass.problem.iter().map(|problem| sentence(&format!("Left out: {problem}"))));
+        let _ = writeln!(
+            page,
+            "<tr><td class=\"n\">{}</td><td>{}</td><td>{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td>{}</td></tr>",
+            place + 1,
+            escape(&pass.title),
+            escape(&numbers(&pass.numbers)),
+            pass.joints_changed,
+            pass.change_rad.map_or_else(|| "–".to_owned(), degrees),
+            escape(&words.join(" ")),
+        );
+    }
+    page.push_str("</tbody>\n</table></div>\n");
+}
+
+/// With a capital letter and one full stop at its end.
+fn sentence(words: &str) -> String {
+    let mut letters = words.trim_end_matches('.').chars();
+    let first = letters.next().map(|letter| letter.to_uppercase().to_string()).unwrap_or_default();
+    format!("{first}{}.", letters.as_str())
 }
 
 /// What the two clips do not share, in words.
@@ -122,12 +196,13 @@ fn tiles(page: &mut String, clip: &ClipProof) {
             more = escape(more)
         );
     };
-    let left = clip.found.len() - clip.gone();
-    let more = match (left, clip.new.len()) {
-        (0, 0) => "none left".to_owned(),
-        (left, 0) => format!("{left} left"),
-        (left, new) => format!("{left} left, {new} new"),
-    };
+    let counts = [(clip.left(), "left"), (clip.meant(), "meant"), (clip.new.len(), "new")];
+    let counts: Vec<String> = counts
+        .into_iter()
+        .filter(|(count, _)| *count > 0)
+        .map(|(count, state)| format!("{count} {state}"))
+        .collect();
+    let more = if counts.is_empty() { "none left".to_owned() } else { counts.join(", ") };
     tile("Snags gone", &format!("{} of {}", clip.gone(), clip.found.len()), &more);
     let where_most = measurement.most_changed().filter(|joint| joint.change.value > 0.0);
     let change =
@@ -175,24 +250,42 @@ fn snags(page: &mut String, clip: &ClipProof) {
     }
     page.push_str(
         "<h3>What was found</h3>\n<div class=\"wide\"><table>\n<thead><tr><th>State</th><th>Kind</th><th>Joint</th><th class=\"n\">Frames</th>\
-         <th class=\"n\">Seconds</th><th class=\"n\">Size</th><th>What it is</th></tr></thead>\n<tbody>\n",
+         <th class=\"n\">Seconds</th><th class=\"n\">Size</th><th class=\"n\">Sure</th><th>Mend</th><th class=\"n\">Change</th>\
+         <th class=\"n\">Limb<br>end</th><th>What it is</th></tr></thead>\n<tbody>\n",
     );
     let mut row = |snag: &FoundSnag, state: &str| {
         let range = |a: String, b: String| if a == b { a } else { format!("{a}–{b}") };
+        let made = clip.mend_of(snag);
+        let mend = made.map_or_else(
+            || snag.mend.to_owned(),
+            |made| match numbers(&made.numbers) {
+                none if none.is_empty() => made.mend.to_owned(),
+                numbers => format!("{}: {numbers}", made.mend),
+            },
+        );
+        let [change, length] = made.map_or_else(
+            || ["–", "–"].map(str::to_owned),
+            |made| [degrees(made.change_rad), significant(made.change_length)],
+        );
+        let advice = if state == "left" && !snag.safe { " A person has to decide." } else { "" };
         let _ = writeln!(
             page,
-            "<tr><td class=\"{state}\">{state}</td><td><b class=\"letter\">{}</b> {}</td><td>{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td>{}</td></tr>",
+            "<tr><td class=\"{state}\">{state}</td><td class=\"kind\"><b class=\"letter\">{}</b> {}</td><td>{}</td><td class=\"n\">{}</td>\
+             <td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{:.0}\u{a0}%</td><td>{}</td><td class=\"n\">{change}</td>\
+             <td class=\"n\">{length}</td><td>{}</td></tr>",
             snag.kind.letter(),
             snag.kind,
             escape(&snag.joint),
             range(snag.frames[0].to_string(), snag.frames[1].to_string()),
             range(plain(snag.secs[0], 2), plain(snag.secs[1], 2)),
             format_args!("{:.1}°", snag.size_rad.to_degrees()),
-            escape(&snag.text),
+            100.0 * snag.confidence,
+            escape(&mend),
+            escape(&(sentence(&snag.text) + advice)),
         );
     };
     for snag in &clip.found {
-        row(snag, if snag.gone { "gone" } else { "left" });
+        row(snag, snag.state());
     }
     for snag in &clip.new {
         row(snag, "new");
@@ -331,10 +424,15 @@ fn tips(page: &mut String, measurement: &Measurement) {
 }
 
 fn foot(page: &mut String, sheet: &Sheet) {
+    let what = if sheet.is_computed {
+        "the results of a scene, worked out and not read from a written file"
+    } else {
+        "the written file as read back"
+    };
     let times: usize = sheet.clips.iter().map(|clip| clip.measurement.times_compared).sum();
     let _ = write!(
         page,
-        "<footer>\n<p>Measured on the written file as read back, played as its format says, at {times} times: every frame and key of both files and the middles \
+        "<footer>\n<p>Measured on {what}, played as its format says, at {times} times: every frame and key of both files and the middles \
          between. Change: the turn from a joint's orientation before to that after, relative to its parent. Ends of limbs: distance in the scene, in the file's lengths. \
          Fastest turn and jerk: differences from frame to frame.</p>\n<p class=\"caution\">{CAUTION}</p>\n<p>Turnwright {}</p>\n</footer>\n",
         env!("CARGO_PKG_VERSION")
@@ -393,10 +491,6 @@ fn significant(value: f64) -> String {
     }
     let decimals = (2 - value.log10().floor() as i32).max(0) as usize;
     plain(value, decimals)
-}
-
-fn short_hash(hash: &str) -> &str {
-    hash.get(..12).unwrap_or(hash)
 }
 
 fn file_name(path: &str) -> &str {

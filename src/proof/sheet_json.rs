@@ -3,8 +3,10 @@
 use serde_json::{Map, Value, json};
 
 use crate::limit::Keeping;
+use crate::scene::PassNumber;
 
-use super::measure::{JointMeasure, Measurement, TipMeasure};
+use super::measure::{JointMeasure, Measurement, StoredForms, TipMeasure};
+use super::passes::{MendFacts, PassFacts};
 use super::rates::Peak;
 use super::sheet::{CAUTION, ClipProof, FoundSnag, LimitRow, Sheet};
 
@@ -12,7 +14,15 @@ use super::sheet::{CAUTION, ClipProof, FoundSnag, LimitRow, Sheet};
 ///
 /// `joints`, `tips` and `snags` are flat lists over all clips; each entry names its clip.
 pub fn sheet_json(sheet: &Sheet) -> String {
-    let file = |facts: &super::FileFacts| json!({"file": facts.file, "sha256": facts.sha256});
+    let file = |facts: &super::FileFacts| {
+        json!({
+            "file": facts.file,
+            "format": facts.format,
+            "bytes": facts.bytes,
+            "clips": facts.clips,
+            "sha256": facts.sha256,
+        })
+    };
     let mut object = Map::new();
     object.insert("turnwright".to_owned(), json!(env!("CARGO_PKG_VERSION")));
     object.insert("before".to_owned(), file(&sheet.before));
@@ -29,8 +39,10 @@ pub fn sheet_json(sheet: &Sheet) -> String {
     let all = |rows: fn(&ClipProof) -> Vec<Value>| -> Value { sheet.clips.iter().flat_map(rows).collect() };
     object.insert("joints".to_owned(), all(joint_rows));
     object.insert("tips".to_owned(), all(tip_rows));
+    object.insert("passes".to_owned(), all(pass_rows));
     object.insert("snags".to_owned(), all(snag_rows));
     object.insert("limits".to_owned(), all(limit_rows));
+    object.insert("after_is_read_back".to_owned(), json!(!sheet.is_computed));
     object.insert("notes".to_owned(), json!(sheet.notes));
     object.insert("caution".to_owned(), json!(CAUTION));
     let mut text = serde_json::to_string_pretty(&Value::Object(object)).unwrap_or_default();
@@ -66,13 +78,28 @@ fn clip_object(clip: &ClipProof) -> Value {
         "fastest_after_deg_per_s": fastest_after,
         "max_jerk_before_deg_per_s3": jerk_before,
         "max_jerk_after_deg_per_s3": jerk_after,
+        "keys_before": measurement.keys[0],
+        "keys_after": measurement.keys[1],
+        "stored_before": stored(&measurement.stored[0]),
+        "stored_after": stored(&measurement.stored[1]),
         "off_unit_before": measurement.off_unit[0],
         "off_unit_after": measurement.off_unit[1],
         "not_finite_before": measurement.not_finite[0],
         "not_finite_after": measurement.not_finite[1],
         "snags_before": clip.found.len(),
         "snags_gone": clip.gone(),
+        "snags_meant": clip.meant(),
+        "snags_left": clip.left(),
         "snags_new": clip.new.len(),
+    })
+}
+
+/// How many joints hold turns in which form.
+fn stored(forms: &StoredForms) -> Value {
+    json!({
+        "rotors": forms.rotors,
+        "file_angles": forms.file_angles,
+        "plane_angles": forms.plane_angles,
     })
 }
 
@@ -135,6 +162,39 @@ fn limit_rows(clip: &ClipProof) -> Vec<Value> {
     proof.rows.iter().map(row).collect()
 }
 
+fn numbers(numbers: &[PassNumber]) -> Value {
+    let row = |number: &PassNumber| json!({"name": number.name, "value": number.value, "unit": number.unit});
+    numbers.iter().map(row).collect()
+}
+
+fn pass_rows(clip: &ClipProof) -> Vec<Value> {
+    let mend = |mend: &MendFacts| {
+        json!({
+            "kind": mend.kind.name(),
+            "joint": mend.joint,
+            "first_frame": mend.frames[0],
+            "last_frame": mend.frames[1],
+            "mend": mend.mend,
+            "numbers": numbers(&mend.numbers),
+            "change_deg": mend.change_rad.to_degrees(),
+            "change_length": mend.change_length,
+        })
+    };
+    let row = |pass: &PassFacts| {
+        json!({
+            "clip": clip.label,
+            "pass": pass.title,
+            "numbers": numbers(&pass.numbers),
+            "joints_changed": pass.joints_changed,
+            "change_deg": pass.change_rad.map(f64::to_degrees),
+            "notes": pass.notes,
+            "problem": pass.problem,
+            "mends": pass.mends.iter().map(mend).collect::<Vec<_>>(),
+        })
+    };
+    clip.passes.iter().map(row).collect()
+}
+
 fn snag_rows(clip: &ClipProof) -> Vec<Value> {
     let row = |snag: &FoundSnag, state: &str| {
         json!({
@@ -146,10 +206,13 @@ fn snag_rows(clip: &ClipProof) -> Vec<Value> {
             "first_time": snag.secs[0],
             "last_time": snag.secs[1],
             "size_deg": snag.size_rad.to_degrees(),
+            "confidence": snag.confidence,
+            "mend": snag.mend,
+            "safe": snag.safe,
             "state": state,
             "text": snag.text,
         })
     };
-    let found = clip.found.iter().map(|snag| row(snag, if snag.gone { "gone" } else { "left" }));
+    let found = clip.found.iter().map(|snag| row(snag, snag.state()));
     found.chain(clip.new.iter().map(|snag| row(snag, "new"))).collect()
 }

@@ -37,18 +37,23 @@ fn same_form(before: &RotationTrack, after: &RotationTrack) -> bool {
     }
 }
 
-/// Whether two tracks of places or sizes are the same bit for bit, broken values included.
-pub(super) fn same_vectors(before: Option<&VectorTrack>, after: Option<&VectorTrack>) -> bool {
+/// Keys of places or sizes that differ in any bit, broken values included. `None` where the two have other times or paths, so that keys
+/// say nothing.
+pub(super) fn changed_vectors(
+    before: Option<&VectorTrack>,
+    after: Option<&VectorTrack>,
+) -> Option<Vec<usize>> {
     let bits = |v: &DVec3| v.to_array().map(f64::to_bits);
     match (before, after) {
-        (None, None) => true,
-        (Some(own), Some(others)) => {
-            same_times(&own.times, &others.times)
+        (None, None) => Some(Vec::new()),
+        (Some(own), Some(others))
+            if same_times(&own.times, &others.times)
                 && own.path == others.path
-                && own.keys.len() == others.keys.len()
-                && own.keys.iter().map(bits).eq(others.keys.iter().map(bits))
+                && own.keys.len() == others.keys.len() =>
+        {
+            Some((0..own.keys.len()).filter(|&key| bits(&own.keys[key]) != bits(&others.keys[key])).collect())
         }
-        _ => false,
+        _ => None,
     }
 }
 

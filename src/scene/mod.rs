@@ -16,6 +16,6 @@ pub use library::{Library, Loaded};
 pub use marker::{Marker, MarkerChange};
 pub use pass::{
     BlendForm, BlendPass, ClipRef, Closing, KeysPass, LimitsPass, LoopPass, MendPass, Need, NoOthers, Others,
-    Outcome, Pass, PassError, PassId, PassKind, PassStep, PushPass, ReducePass, ResamplePass, RetargetPass,
-    RetargetSetting, Scope, SmoothPass, SnagMark,
+    Outcome, Pass, PassError, PassId, PassKind, PassNumber, PassStep, PushPass, ReducePass, ResamplePass,
+    RetargetPass, RetargetSetting, Scope, SmoothPass, SnagMark,
 };

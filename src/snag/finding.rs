@@ -46,6 +46,28 @@ pub enum Remedy {
     Ask,
 }
 
+impl Remedy {
+    /// What it does, in a word or two, as in `--json` and on sheets.
+    pub const fn name(&self) -> &'static str {
+        match self {
+            Self::Normalise => "normalise",
+            Self::Negate => "negate",
+            Self::Unwrap(_) => "unwrap",
+            Self::NearestAngles => "nearest-angles",
+            Self::Redraw => "redraw",
+            Self::FromOthers => "redraw-from-others",
+            Self::Smooth { .. } => "smooth",
+            Self::ShortWay => "short-way",
+            Self::TakeOut(_) => "take-out",
+            Self::TakeOutAbove(_) => "take-out-above",
+            Self::Clamp(_) => "clamp",
+            Self::CloseLoop(_) => "close-loop",
+            Self::Hold(_) => "hold",
+            Self::Ask => "ask",
+        }
+    }
+}
+
 /// How a loop is closed.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub struct LoopClose {

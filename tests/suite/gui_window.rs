@@ -231,6 +231,20 @@ fn an_export_by_dialog_writes_the_corrected_clip_and_tells_what_changed() {
         bench.messages()
     );
     assert_eq!(disk::read(&path).unwrap(), before, "the source is never changed");
+    // The sheet beside it tells the passes of the document and lists the mended snags as gone.
+    let page =
+        String::from_utf8(disk::read(&folder.path().join("deckhand_mended-proof.html")).unwrap()).unwrap();
+    let work = bench.window().bench().work().unwrap().clone();
+    for pass in &work.passes {
+        assert!(page.contains(&pass.step.title()), "{}", pass.step.title());
+    }
+    assert_eq!(page.matches("<td class=\"gone\">").count(), work.mended().count());
+    bench.ask(Command::Do(Action::Export));
+    bench.click("Proof sheet beside it");
+    disk::write(&folder.path().join("deckhand_mended-proof.html"), b"mine").unwrap();
+    bench.click("Export");
+    let kept = disk::read(&folder.path().join("deckhand_mended-proof.html")).unwrap();
+    assert_eq!(kept, b"mine", "no sheet where none is wanted");
     let again = open(&written, &OpenOptions::default()).unwrap();
     let result = bench.window().bench().result().unwrap();
     let joint = bench.window().bench().snags().iter().find(|snag| snag.safe).unwrap().joint;
@@ -252,7 +266,7 @@ fn an_export_onto_the_source_is_refused_in_the_dialog() {
     let before = disk::read(&path).unwrap();
     let mut bench = Bench::of_file(&path);
     bench.ask(Command::Do(Action::Export));
-    bench.ask(Command::ExportTo(path.clone()));
+    bench.ask(Command::ExportTo { path: path.clone(), has_proof: true });
     assert_eq!(disk::read(&path).unwrap(), before);
     assert!(bench.0.query_by_label_contains("expected another file than the input").is_some());
 }

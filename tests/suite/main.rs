@@ -47,6 +47,7 @@
 //! | `gui_start` | the real program where no window can open |
 //! | `gui_two` | two clips in the window: the blend lane, its pictures and forms, loops |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
+//! | `proof_sheet` | every figure of a proof sheet against another way to it, and the passes it tells |
 //! | `gui_time` | turn map, timeline, passes and snags: choices, forms, markers, what is looked for |
 //! | `gui_window` | the whole window, driven by accessible labels; what is asserted is the document |
 //! | `raster` | small pictures of one subject each |
@@ -126,6 +127,7 @@ mod path_export;
 mod paths;
 mod planter;
 mod proof;
+mod proof_sheet;
 mod raster;
 mod reduce;
 mod rest_pose;

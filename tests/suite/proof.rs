@@ -31,12 +31,19 @@ fn sheet(before: &Clip, after: &Clip) -> Sheet {
     let mut clip: ClipProof =
         proof::compare(before, after, "take <1>".to_owned(), 0, &Unwatched).expect("the clips share joints");
     clip.draw(before, after).expect("the pictures can be made");
-    let facts = |file: &str| FileFacts { file: file.to_owned(), sha256: disk::hash(file.as_bytes()) };
+    let facts = |file: &str| FileFacts {
+        file: file.to_owned(),
+        format: "BVH".to_owned(),
+        bytes: 12_345,
+        clips: 1,
+        sha256: disk::hash(file.as_bytes()),
+    };
     Sheet {
         before: facts("a.bvh"),
         after: facts("b&c.bvh"),
         clips: vec![clip],
         notes: vec!["x < y".to_owned()],
+        is_computed: false,
     }
 }
 

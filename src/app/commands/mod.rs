@@ -87,7 +87,12 @@ pub enum Command {
     /// Save the scene there.
     SaveTo(PathBuf),
     /// Export the clip there.
-    ExportTo(PathBuf),
+    ExportTo {
+        /// The file.
+        path: PathBuf,
+        /// Whether a proof sheet is written beside it.
+        has_proof: bool,
+    },
     /// Use this file as a source.
     RelocateTo(usize, PathBuf),
     /// Measure the turns of the clip on show, and of all others of its file, from this pose.

@@ -12,7 +12,8 @@ use super::super::view_models::{CurveKey, CurveSet, HeatMap, HeatWish, TimeWindo
 use super::super::window::Window;
 use super::blend::BlendAnswer;
 use super::carry::CarryAnswer;
-use super::files::{Exported, OpenedScene};
+use super::export::Exported;
+use super::files::OpenedScene;
 use super::limits::Fitted;
 use crate::clip::Clip;
 use crate::exchange::Source;
@@ -356,13 +357,9 @@ impl Window {
         match result {
             Ok(exported) => {
                 self.dialog = None;
-                let beside = exported.beside.as_ref().map(|path| format!(" and {}", file_name(path)));
-                let text = format!(
-                    "Exported {}{}: {}",
-                    exported.path.display(),
-                    beside.unwrap_or_default(),
-                    exported.summary
-                );
+                let more = exported.beside.iter().chain(&exported.proof);
+                let more = more.fold(String::new(), |more, path| more + " and " + &file_name(path));
+                let text = format!("Exported {}{more}: {}", exported.path.display(), exported.summary);
                 self.tell(Message { details: exported.notes, ..Message::done(text) });
             }
             Err(error) if self.dialog == Some(Dialog::Export) => self.form.error = Some(error),

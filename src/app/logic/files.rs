@@ -9,12 +9,12 @@ use super::super::bench::{Findings, SourceState};
 use super::super::file_picker::Purpose;
 use super::super::jobs::Slot;
 use super::super::panels::{Dialog, Form, Message, Then};
-use super::super::view_models::{Changes, changes, counted};
+use super::super::view_models::counted;
 use super::super::window::Window;
 use super::answers::Answer;
 use crate::demo;
 use crate::exchange::csv::{CsvErrorKind, CsvOptions, NamedColumns, TimeUnit};
-use crate::exchange::{self, ClipAddress, Guard, OpenError, OpenOptions, Source, disk, ron};
+use crate::exchange::{self, ClipAddress, OpenError, OpenOptions, Source, disk, ron};
 use crate::scene::{Document, Edit, Library, Loaded, SourceRef};
 
 /// A scene as read, with its files as far as they were found.
@@ -28,19 +28,6 @@ pub(crate) struct OpenedScene {
     pub sources: Vec<SourceState>,
     /// Joints it names that are no longer there.
     pub lost: Vec<String>,
-}
-
-/// What an export wrote.
-#[derive(Debug)]
-pub(crate) struct Exported {
-    /// The file.
-    pub path: PathBuf,
-    /// A file beside it.
-    pub beside: Option<PathBuf>,
-    /// What changed, in a sentence.
-    pub summary: String,
-    /// What is worth telling.
-    pub notes: Vec<String>,
 }
 
 fn is_scene(path: &Path) -> bool {
@@ -260,50 +247,15 @@ impl Window {
         let name = format!("{stem}_mended.{}", source.format.extension());
         let path = source.path.with_file_name(name);
         self.form = Form::with_path(absolute(&path));
+        self.form.has_proof = true;
         self.dialog = Some(Dialog::Export);
     }
 
     /// The source of the clip on show, and its index.
-    fn chosen_source(&self) -> Option<(Arc<Source>, usize)> {
+    pub(super) fn chosen_source(&self) -> Option<(Arc<Source>, usize)> {
         let project = self.bench.project.as_ref()?;
         let index = self.bench.work()?.source;
         Some((Arc::clone(project.sources.get(index)?.source()?), index))
-    }
-
-    pub(super) fn export_to(&mut self, path: PathBuf) {
-        let Some((source, index)) = self.chosen_source() else { return };
-        let Some(project) = &self.bench.project else { return };
-        let document = Arc::clone(project.document());
-        let choice = self.bench.work().map(|work| work.clip);
-        let library = project.library();
-        let inputs: Vec<PathBuf> = document.sources.iter().map(|source| source.path.clone()).collect();
-        self.jobs.submit(Slot::Export, move |watch| {
-            let mut results = source.clips.clone();
-            let mut all = Changes::default();
-            let works = document.works.iter().enumerate().filter(|(_, work)| work.source == index);
-            for (done, (number, work)) in works.enumerate() {
-                if !crate::snag::Progress::report(watch, done, results.len() + 1) {
-                    return None;
-                }
-                let Some(clip) = source.clips.get(work.clip) else { continue };
-                let Some(result) = library.evaluate(number).map(|evaluation| evaluation.result) else {
-                    continue;
-                };
-                all = all.and(&changes(clip, &result));
-                results[work.clip] = result;
-            }
-            let guard = Guard { inputs, force: false };
-            let written = exchange::write(&source, &results, choice, &path, &guard);
-            Some(Answer::Exported(match written {
-                Ok(written) => Ok(Box::new(Exported {
-                    path: written.path,
-                    beside: written.beside,
-                    summary: all.sentence(),
-                    notes: written.notes.iter().map(ToString::to_string).collect(),
-                })),
-                Err(error) => Err(error.to_string()),
-            }))
-        });
     }
 
     pub(super) fn ask_for_source(&mut self) {

@@ -13,10 +13,11 @@ use crate::cli::output::{Output, text};
 use crate::clip::Clip;
 use crate::demo::{DemoScene, SCENES};
 use crate::exchange::{self, Guard, OpenOptions, disk};
-use crate::proof::Sheet;
+use crate::proof::{Pair, Sheet};
 use crate::raster::spread_times;
+use crate::snag::SnagKind;
 
-use super::mend::{Choice, mend_clip};
+use super::mend::{Choice, mend_clip, mends_run};
 use super::picture;
 use super::proof::{SheetFormat, sheet_of, write};
 
@@ -45,7 +46,7 @@ fn do_scene(scene: &DemoScene, folder: &Path, output: &mut Output) -> Result<(),
 
     let mut input = input::read_back(&clip_path, &OpenOptions::default(), output)?;
     let before = input.clip().clone();
-    let (mended, snags, mends) = mend_clip(&clip_path, &before, None, &Choice::safe())?;
+    let (mended, snags, mends) = mend_clip(&clip_path, &before, None, &Choice::safe(), &[])?;
     let label = input.source.clip_label(0);
     let report = ClipReport {
         path: &clip_path,
@@ -72,7 +73,17 @@ fn do_scene(scene: &DemoScene, folder: &Path, output: &mut Output) -> Result<(),
         output.say(&format!("wrote {}", written.display()));
     }
     let after = input::read_back(&written, &OpenOptions::default(), output)?;
-    let sheet = sheet_of(&input, &after, &[(0, 0)], &input.limits, SheetFormat::Html)?;
+    let pair = Pair {
+        label,
+        index: 0,
+        before: before.clone(),
+        after: after.clip().clone(),
+        kinds: SnagKind::defaults(),
+        limits: None,
+        passes: mends_run(&before, &snags, &mends),
+        meant: Vec::new(),
+    };
+    let sheet = sheet_of(&input.source, &after.source, vec![pair], SheetFormat::Html)?;
     for (extension, format) in [("html", SheetFormat::Html), ("json", SheetFormat::Json)] {
         write(&sheet, &folder.join(format!("{}-proof.{extension}", scene.name)), format, output)?;
     }

@@ -16,7 +16,8 @@ use crate::clip::Clip;
 use crate::exchange::{self, Format, Guard};
 use crate::limit::Limits;
 use crate::mend::{self, SurveyOptions};
-use crate::proof;
+use crate::proof::{self, PassFacts, passes_run};
+use crate::scene::{Evaluator, MendPass, NoOthers, Pass, PassId, SnagMark};
 use crate::snag::{Remedy, Snag, SnagKind};
 
 use super::proof::{SheetFormat, write_sheet};
@@ -73,7 +74,7 @@ pub(crate) fn run(args: &MendArgs, output: &mut Output) -> Result<u8, CliError> 
         if let (Some(sheet), Some(format)) = (&args.proof, sheet_format) {
             let path = targets::beside(sheet, target, inputs.len());
             guard.check(&path)?;
-            write_sheet(input, target, limits, &path, format, output)?;
+            write_sheet(input, target, limits, &mended.told, &path, format, output)?;
         }
     }
     if failed > 0 {
@@ -105,21 +106,63 @@ impl Choice {
 struct Mended {
     /// One for each clip of the source: those meant mended, the others as they are.
     results: Vec<Arc<Clip>>,
-    /// Index, snags, and what was done about them, of each clip that was meant.
-    told: Vec<(usize, Vec<Snag>, MendReport)>,
+    /// Each clip that was meant.
+    told: Vec<MendedClip>,
+}
+
+/// What was found in one clip, and what was done about it.
+pub(super) struct MendedClip {
+    /// Its index in the source.
+    pub(super) index: usize,
+    /// The clip before.
+    before: Arc<Clip>,
+    /// The kinds that were looked for, and the usual ones: a sheet tells of all of them.
+    pub(super) kinds: Vec<SnagKind>,
+    snags: Vec<Snag>,
+    mends: MendReport,
+}
+
+impl MendedClip {
+    /// What was done, as a scene would do it: a pass for each kind, in mending order.
+    pub(super) fn passes_run(&self) -> Vec<PassFacts> {
+        mends_run(&self.before, &self.snags, &self.mends)
+    }
+}
+
+/// The mends that were taken as passes that ran.
+pub(super) fn mends_run(before: &Arc<Clip>, snags: &[Snag], mends: &MendReport) -> Vec<PassFacts> {
+    let taken = taken(snags, &mends.mended);
+    let passes: Vec<Pass> = taken
+        .chunk_by(|a, b| a.kind == b.kind)
+        .zip(0..)
+        .map(|(own, id)| Pass {
+            id: PassId(id),
+            on: true,
+            step: MendPass::new(own[0].kind, own.to_vec()).into(),
+        })
+        .collect();
+    passes_run(&passes, &Evaluator::default().evaluate(before, &passes, &NoOthers))
+}
+
+/// Those that are mended, in mending order: each kind was found on what the kinds before it left.
+fn taken(snags: &[Snag], mended: &[bool]) -> Vec<Snag> {
+    let mut taken: Vec<Snag> =
+        snags.iter().zip(mended).filter(|(_, taken)| **taken).map(|(snag, _)| snag.clone()).collect();
+    taken.sort_by_key(|snag| (snag.kind, snag.joint, snag.first_key));
+    taken
 }
 
 impl Mended {
     fn report(&self, input: &Input, is_json: bool, output: &mut Output) -> Result<(), CliError> {
-        for (index, snags, mends) in &self.told {
-            let label = input.source.clip_label(*index);
+        for own in &self.told {
+            let label = input.source.clip_label(own.index);
             let report = ClipReport {
                 path: &input.source.path,
                 label: &label,
-                index: *index,
-                clip: &input.results[*index],
-                snags,
-                mends: Some(mends),
+                index: own.index,
+                clip: &input.results[own.index],
+                snags: &own.snags,
+                mends: Some(&own.mends),
             };
             if is_json {
                 output.line(json::clip(&report))?;
@@ -134,25 +177,31 @@ impl Mended {
 fn mend_input(input: &Input, limits: &[Option<Arc<Limits>>], choice: &Choice) -> Result<Mended, CliError> {
     let mut mended = Mended { results: input.results.clone(), told: Vec::new() };
     for &index in &input.chosen {
+        // What a scene leaves as meant stays.
+        let left = input.works[index].as_ref().map_or(&[][..], |work| &work.left);
         let (result, snags, mends) =
-            mend_clip(&input.source.path, &input.results[index], limits[index].as_ref(), choice)?;
+            mend_clip(&input.source.path, &input.results[index], limits[index].as_ref(), choice, left)?;
         mended.results[index] = result;
-        mended.told.push((index, snags, mends));
+        let kinds = SnagKind::ALL.into_iter().filter(|kind| kind.is_default() || choice.kinds.contains(kind));
+        let before = input.results[index].clone();
+        mended.told.push(MendedClip { index, before, kinds: kinds.collect(), snags, mends });
     }
     Ok(mended)
 }
 
-/// The mended clip, its snags, and what was done about them.
+/// The mended clip, its snags, and what was done about them. Those in `left` are not mended.
 pub(super) fn mend_clip(
     path: &Path,
     clip: &Arc<Clip>,
     limits: Option<&Arc<Limits>>,
     choice: &Choice,
+    left: &[SnagMark],
 ) -> Result<(Arc<Clip>, Vec<Snag>, MendReport), CliError> {
     let progress = ProgressLine::new(format!("{}: mending", path.display()));
     let options = SurveyOptions { kinds: choice.kinds.clone(), limits: limits.cloned() };
     let survey = mend::survey(clip, &options, &progress)?;
-    let mended: Vec<bool> = survey.snags.iter().map(|snag| choice.takes(snag)).collect();
+    let takes = |snag: &Snag| choice.takes(snag) && !left.contains(&SnagMark::of(snag));
+    let mended: Vec<bool> = survey.snags.iter().map(takes).collect();
     let takes_all =
         survey.snags.iter().zip(&mended).all(|(snag, &taken)| taken || snag.remedy == Remedy::Ask);
     let result = if survey.snags.is_empty() {
@@ -160,16 +209,7 @@ pub(super) fn mend_clip(
     } else if takes_all {
         Arc::new(survey.mended)
     } else {
-        // In mending order: each kind was found on what the kinds before it left.
-        let mut taken: Vec<Snag> = survey
-            .snags
-            .iter()
-            .zip(&mended)
-            .filter(|(_, taken)| **taken)
-            .map(|(snag, _)| snag.clone())
-            .collect();
-        taken.sort_by_key(|snag| (snag.kind, snag.joint, snag.first_key));
-        let result = mend::apply_all(clip, &taken)
+        let result = mend::apply_all(clip, &taken(&survey.snags, &mended))
             .map_err(|source| CliError::Mend { path: path.to_owned(), source })?;
         Arc::new(result)
     };

@@ -6,12 +6,15 @@ use std::sync::Arc;
 use crate::cli::DONE;
 use crate::cli::args::ProofArgs;
 use crate::cli::error::CliError;
-use crate::cli::input::{self, Input};
+use crate::cli::input::{self, Input, Work};
 use crate::cli::output::Output;
 use crate::cli::progress::ProgressLine;
-use crate::exchange::{Guard, OpenOptions, disk};
+use crate::exchange::{Guard, OpenOptions, Source, disk};
 use crate::limit::Limits;
-use crate::proof::{self, FileFacts, ProofError, Sheet, sheet_html, sheet_json};
+use crate::proof::{self, Pair, Sheet, sheet_html, sheet_json};
+use crate::snag::SnagKind;
+
+use super::mend::MendedClip;
 
 /// The form of a sheet, told by the file's extension.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -47,67 +50,68 @@ pub(crate) fn run(args: &ProofArgs, output: &mut Output) -> Result<u8, CliError>
     let mut inputs = before.files();
     inputs.extend(after.files());
     Guard { inputs, force: args.force }.check(&args.output)?;
-    let clips = [(before.first(), after.first())];
-    let sheet = sheet_of(&before, &after, &clips, &before.limits, format)?;
+    let (b, a) = (before.first(), after.first());
+    let pair = Pair {
+        label: before.source.clip_label(b),
+        index: b,
+        before: before.results[b].clone(),
+        after: after.results[a].clone(),
+        kinds: SnagKind::defaults(),
+        limits: before.limits[b].clone(),
+        passes: after.works[a].as_ref().map(Work::passes_run).unwrap_or_default(),
+        meant: after.works[a].as_ref().map(|work| work.left.clone()).unwrap_or_default(),
+    };
+    let mut sheet = sheet_of(&before.source, &after.source, vec![pair], format)?;
+    sheet.is_computed = input::is_scene(&after.path);
     write(&sheet, &args.output, format, output)?;
     Ok(DONE)
 }
 
-/// The sheet of a file just written, read back from the disk, against the input it was made from.
+/// The sheet of a file just written, read back from the disk, against the source it was made from.
 pub(super) fn write_sheet(
     before: &Input,
     written: &Path,
     limits: &[Option<Arc<Limits>>],
+    mended: &[MendedClip],
     path: &Path,
     format: SheetFormat,
     output: &mut Output,
 ) -> Result<(), CliError> {
     let options = OpenOptions::default().or_as_remembered(&before.source.reading);
     let after = input::read_back(written, &options, output)?;
+    let holds_all = after.source.clips.len() == before.source.clips.len();
     // Where the new format holds one clip, it is the first of those chosen.
-    let clips: Vec<(usize, usize)> = if after.source.clips.len() == before.source.clips.len() {
-        before.chosen.iter().map(|&index| (index, index)).collect()
-    } else {
-        before.chosen.iter().take(1).map(|&index| (index, 0)).collect()
-    };
-    let sheet = sheet_of(before, &after, &clips, limits, format)?;
+    let shown = if holds_all { mended } else { &mended[..1.min(mended.len())] };
+    let pairs = shown.iter().map(|own| {
+        let (index, work) = (own.index, before.works[own.index].as_ref());
+        let mut passes = work.map(Work::passes_run).unwrap_or_default();
+        passes.extend(own.passes_run());
+        Pair {
+            label: before.source.clip_label(index),
+            index,
+            // As it came in, not as a scene's passes had made it.
+            before: before.source.clips[index].clone(),
+            after: after.results[if holds_all { index } else { 0 }].clone(),
+            kinds: own.kinds.clone(),
+            limits: limits[index].clone(),
+            passes,
+            meant: work.map(|work| work.left.clone()).unwrap_or_default(),
+        }
+    });
+    let sheet = sheet_of(&before.source, &after.source, pairs.collect(), format)?;
     write(&sheet, path, format, output)
 }
 
-/// Measures pairs of clips, each the index of one before and of one after; with pictures where the form has them.
+/// Measures pairs of clips; with pictures where the form has them.
 pub(super) fn sheet_of(
-    before: &Input,
-    after: &Input,
-    clips: &[(usize, usize)],
-    limits: &[Option<Arc<Limits>>],
+    before: &Source,
+    after: &Source,
+    pairs: Vec<Pair>,
     format: SheetFormat,
 ) -> Result<Sheet, CliError> {
-    let facts = |input: &Input| FileFacts {
-        file: input.source.path.display().to_string(),
-        sha256: input.source.sha256().to_owned(),
-    };
-    let progress = ProgressLine::new(format!("{}: measuring", after.source.path.display()));
-    let clips = clips
-        .iter()
-        .map(|&(b, a)| {
-            let label = before.source.clip_label(b);
-            let (before, after) = (&before.results[b], &after.results[a]);
-            let mut clip = proof::compare_with(before, after, label, b, limits[b].as_ref(), &progress)?;
-            if format == SheetFormat::Html {
-                clip.draw(before, after)?;
-            }
-            Ok(clip)
-        })
-        .collect::<Result<Vec<_>, ProofError>>()
-        .map_err(|source| CliError::Proof { path: after.path.clone(), source })?;
-    let notes = [before, after]
-        .into_iter()
-        .flat_map(|input| {
-            let file = input.source.path.display().to_string();
-            input.source.notes.iter().map(move |note| format!("{file}: {note}"))
-        })
-        .collect();
-    Ok(Sheet { before: facts(before), after: facts(after), clips, notes })
+    let progress = ProgressLine::new(format!("{}: measuring", after.path.display()));
+    proof::sheet([before, after], pairs, format == SheetFormat::Html, &progress)
+        .map_err(|source| CliError::Proof { path: after.path.clone(), source })
 }
 
 /// Writes a sheet at one stroke.

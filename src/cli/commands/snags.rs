@@ -12,6 +12,7 @@ use crate::cli::progress::ProgressLine;
 use crate::cli::{DONE, FOUND};
 use crate::limit::Limits;
 use crate::mend::{self, SurveyOptions};
+use crate::scene::SnagMark;
 use crate::snag::{Snag, SnagKind};
 
 /// Gives 1 when any snag was found. A file that can't be read does not keep the others from being looked through.
@@ -65,7 +66,15 @@ fn list(
     let mut has_found = false;
     for &index in &input.chosen {
         let clip = &input.results[index];
-        let snags = snags_of(input, index, kinds, limits[index].clone())?;
+        let mut snags = snags_of(input, index, kinds, limits[index].clone())?;
+        if let Some(work) = &input.works[index] {
+            let found = snags.len();
+            snags.retain(|snag| !work.left.contains(&SnagMark::of(snag)));
+            if snags.len() < found {
+                let text = format!("leaves {} as meant; not listed", found - snags.len());
+                output.note(&input.path, &text);
+            }
+        }
         has_found |= !snags.is_empty();
         let label = input.source.clip_label(index);
         let report =

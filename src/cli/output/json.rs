@@ -34,7 +34,7 @@ fn snag(report: &ClipReport<'_>, index: usize, snag: &Snag) -> Value {
         "first_time": snag.first_secs,
         "last_time": snag.last_secs,
         "size_deg": snag.size_rad.to_degrees(),
-        "mend": mend_name(snag),
+        "mend": snag.remedy.name(),
         "safe": snag.safe,
         "text": snag.text,
     });
@@ -45,25 +45,4 @@ fn snag(report: &ClipReport<'_>, index: usize, snag: &Snag) -> Value {
         object["change_length"] = json!(mends.changes_length[index]);
     }
     object
-}
-
-/// What the mend does, in a word or two.
-fn mend_name(snag: &Snag) -> &'static str {
-    use crate::snag::Remedy;
-    match snag.remedy {
-        Remedy::Normalise => "normalise",
-        Remedy::Negate => "negate",
-        Remedy::Unwrap(_) => "unwrap",
-        Remedy::NearestAngles => "nearest-angles",
-        Remedy::Redraw => "redraw",
-        Remedy::FromOthers => "redraw-from-others",
-        Remedy::Smooth { .. } => "smooth",
-        Remedy::ShortWay => "short-way",
-        Remedy::TakeOut(_) => "take-out",
-        Remedy::TakeOutAbove(_) => "take-out-above",
-        Remedy::Clamp(_) => "clamp",
-        Remedy::Ask => "ask",
-        Remedy::CloseLoop(_) => "close-loop",
-        Remedy::Hold(_) => "hold",
-    }
 }

@@ -10,6 +10,7 @@ use crate::retarget::{self, Partner};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind, PassMemory};
+use super::number::PassNumber;
 use super::others::{ClipRef, Need, Others};
 
 /// How a blend takes its other clip.
@@ -111,6 +112,23 @@ impl PassKind for BlendPass {
                 "Lays what another clip does beyond its reference over this one. The weight may be negative or above one."
             }
         }
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        let mut numbers = match &self.form {
+            BlendForm::Join(place) => vec![
+                PassNumber::new("from", place.first_secs, "s"),
+                PassNumber::new("other clip from", place.second_secs, "s"),
+                PassNumber::new("overlap", place.overlap_secs, "s"),
+            ],
+            BlendForm::Mix { weight, .. } => {
+                let only = weight.only().map(|only| PassNumber::new("weight", 100.0 * only, "%"));
+                only.into_iter().collect()
+            }
+            BlendForm::Add { weight, .. } => vec![PassNumber::new("weight", 100.0 * weight, "%")],
+        };
+        numbers.extend(self.joints.as_ref().map(|joints| PassNumber::count("joints", joints.len())));
+        numbers
     }
 
     fn apply(&self, clip: &Arc<Clip>, others: &dyn Others) -> Result<Outcome, PassError> {

@@ -6,6 +6,7 @@ use crate::clip::{self, Clip, KeyChange, KeyEdit};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
+use super::number::PassNumber;
 use super::others::Others;
 
 /// Edits of single keys, in the order in which they were made.
@@ -44,6 +45,10 @@ impl PassKind for KeysPass {
     fn explanation(&self) -> &'static str {
         "Keys that were moved, added, set or taken away by hand, and the paths between them. All other keys keep their \
          numbers."
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        vec![PassNumber::count("edits", self.edits.len())]
     }
 
     fn apply(&self, clip: &Arc<Clip>, _others: &dyn Others) -> Result<Outcome, PassError> {

@@ -7,6 +7,7 @@ use crate::skeleton::Skeleton;
 
 use super::blend::Pair;
 use super::error::PassError;
+use super::number::PassNumber;
 use super::others::{Need, Others};
 use super::scope::Scope;
 
@@ -42,6 +43,9 @@ pub trait PassKind {
 
     /// What it does, in two sentences at most.
     fn explanation(&self) -> &'static str;
+
+    /// The numbers it runs with, but for its amount and scope, which every kind tells alike.
+    fn numbers(&self) -> Vec<PassNumber>;
 
     /// The clip after this pass. Joints it does not touch stay shared with `clip`, and keys it does not touch keep their
     /// bits. The same parameters on the same clip always give the same bits.

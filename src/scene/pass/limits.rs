@@ -9,6 +9,7 @@ use crate::rotor::{Rotor, slerp};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
+use super::number::PassNumber;
 use super::others::Others;
 use super::scope::Scope;
 
@@ -43,6 +44,10 @@ impl PassKind for LimitsPass {
     fn explanation(&self) -> &'static str {
         "Keeps joints within their limits, also between keys, where it adds some if need be. Soft bends from comfort on, \
          hard stops at the limit."
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        vec![PassNumber::count("limits", self.limits.joints.len())]
     }
 
     fn apply(&self, clip: &Arc<Clip>, _others: &dyn Others) -> Result<Outcome, PassError> {

@@ -9,6 +9,7 @@ use crate::snag::{Remedy, Snag, SnagKind};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
+use super::number::PassNumber;
 use super::others::Others;
 
 /// Mends a list of snags of one kind.
@@ -66,6 +67,10 @@ impl PassKind for MendPass {
 
     fn explanation(&self) -> &'static str {
         self.kind.mend_explanation()
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        vec![PassNumber::count("snags", self.snags.len())]
     }
 
     fn apply(&self, clip: &Arc<Clip>, _others: &dyn Others) -> Result<Outcome, PassError> {

@@ -6,6 +6,7 @@ use crate::clip::{self, Clip, Push};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
+use super::number::PassNumber;
 use super::others::Others;
 
 /// Turns added by hand around single moments.
@@ -24,6 +25,16 @@ impl PassKind for PushPass {
     fn explanation(&self) -> &'static str {
         "Adds a turn around a moment that fades to nothing on both sides, so that captured motion keeps its detail. Keys \
          outside the reach keep their numbers."
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        let turns = self.pushes.iter().map(|push| push.turn.length());
+        let reaches = self.pushes.iter().map(|push| push.reach_secs);
+        vec![
+            PassNumber::count("pushes", self.pushes.len()),
+            PassNumber::angle("largest turn", turns.fold(0.0, f64::max)),
+            PassNumber::new("longest reach", reaches.fold(0.0, f64::max), "s"),
+        ]
     }
 
     fn apply(&self, clip: &Arc<Clip>, _others: &dyn Others) -> Result<Outcome, PassError> {

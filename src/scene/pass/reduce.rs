@@ -6,6 +6,7 @@ use crate::clip::{self, Clip, ReduceOptions};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
+use super::number::PassNumber;
 use super::others::Others;
 use super::scope::Scope;
 
@@ -37,6 +38,15 @@ impl PassKind for ReducePass {
     fn explanation(&self) -> &'static str {
         "Leaves as few keys as keep every joint within the bound, at the keys that go and between them. No step is left \
          larger than 120°."
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        let mut numbers = vec![PassNumber::angle("bound", self.bound_rad)];
+        numbers.extend(self.tip_bound.map(|bound| PassNumber::new("bound of limb ends", bound, "")));
+        if !self.keep_secs.is_empty() {
+            numbers.push(PassNumber::count("moments kept", self.keep_secs.len()));
+        }
+        numbers
     }
 
     fn apply(&self, clip: &Arc<Clip>, _others: &dyn Others) -> Result<Outcome, PassError> {

@@ -6,6 +6,7 @@ use crate::clip::{self, Clip};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
+use super::number::PassNumber;
 use super::others::Others;
 
 /// The most keys that a pass makes, of all joints together: an hour at 120 a second of 115 joints.
@@ -25,6 +26,10 @@ impl PassKind for ResamplePass {
 
     fn explanation(&self) -> &'static str {
         "Puts a key on each frame of another rate, where the clip shows it. Passes after it see those keys alone."
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        vec![PassNumber::new("rate", self.rate, "Hz")]
     }
 
     fn apply(&self, clip: &Arc<Clip>, _others: &dyn Others) -> Result<Outcome, PassError> {

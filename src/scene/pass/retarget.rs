@@ -10,6 +10,7 @@ use crate::skeleton::Skeleton;
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
+use super::number::PassNumber;
 use super::others::{ClipRef, Need, Others};
 
 /// Carries the clip to the skeleton of another source.
@@ -131,6 +132,15 @@ impl PassKind for RetargetPass {
 
     fn explanation(&self) -> &'static str {
         "Lets the figure of another file make the turns of this one. Rest poses are compared by where limbs point, paths are scaled by the legs."
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        let mut numbers = vec![PassNumber::count("rows of the map corrected", self.rows.len())];
+        numbers.extend(self.feet.as_ref().map(|feet| PassNumber::count("feet held by hand", feet.len())));
+        if !self.hands.is_empty() {
+            numbers.push(PassNumber::count("hands held", self.hands.len()));
+        }
+        numbers
     }
 
     fn apply(&self, clip: &Arc<Clip>, others: &dyn Others) -> Result<Outcome, PassError> {

@@ -9,6 +9,7 @@ use crate::snag::LoopForm;
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
+use super::number::PassNumber;
 use super::others::Others;
 
 /// Makes a clip close on itself, and repeats it.
@@ -67,6 +68,14 @@ impl PassKind for LoopPass {
     fn explanation(&self) -> &'static str {
         "Lets the end meet the start in pose and rate, the root's stride kept, and plays the clip several times over. Each \
          round walks on from where the one before has ended."
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        let mut numbers = vec![PassNumber::count("rounds", self.rounds)];
+        if let Some([first, last]) = self.part_secs {
+            numbers.extend([PassNumber::new("from", first, "s"), PassNumber::new("to", last, "s")]);
+        }
+        numbers
     }
 
     fn apply(&self, clip: &Arc<Clip>, _others: &dyn Others) -> Result<Outcome, PassError> {

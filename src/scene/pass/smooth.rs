@@ -6,6 +6,7 @@ use crate::clip::{Clip, JointTracks, Smoothing};
 
 use super::error::PassError;
 use super::kind::{Outcome, PassKind};
+use super::number::PassNumber;
 use super::others::Others;
 use super::scope::Scope;
 
@@ -45,6 +46,15 @@ impl PassKind for SmoothPass {
     fn explanation(&self) -> &'static str {
         "Takes out what is faster than the cut-off, with no delay, at even and uneven keys. Masked spans, the first and the \
          last key stay as they are."
+    }
+
+    fn numbers(&self) -> Vec<PassNumber> {
+        let mut numbers = vec![PassNumber::new("cut-off", self.smoothing.cutoff_hz, "Hz")];
+        numbers.extend(self.smoothing.most_rad.map(|most| PassNumber::angle("largest change", most)));
+        if !self.masks.is_empty() {
+            numbers.push(PassNumber::count("masks", self.masks.len()));
+        }
+        numbers
     }
 
     fn apply(&self, clip: &Arc<Clip>, _others: &dyn Others) -> Result<Outcome, PassError> {

@@ -47,6 +47,9 @@ pub(super) fn export_sheet(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>) 
         _ => "End the name in .gltf, .glb, .bvh or .csv",
     };
     ui.label(RichText::new(words).size(12.5).color(scope.look.faint));
+    ui.checkbox(&mut form.has_proof, "Proof sheet beside it").on_hover_text(
+        "A page that shows what was found, which passes ran and what changed, measured on the written file as it is read back",
+    );
     error_ui(ui, form, scope);
     let typed = form.path.trim().to_owned();
     let clicked = buttons(ui, "Export", !typed.is_empty() && evaluated.is_some(), scope, |ui, scope| {
@@ -57,5 +60,6 @@ pub(super) fn export_sheet(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>) 
     if clicked {
         meant = Some(PathBuf::from(&typed));
     }
-    scope.out.extend(meant.map(Command::ExportTo));
+    let has_proof = form.has_proof;
+    scope.out.extend(meant.map(|path| Command::ExportTo { path, has_proof }));
 }

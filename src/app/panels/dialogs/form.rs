@@ -21,6 +21,8 @@ pub(crate) struct Form {
     pub path: String,
     /// What was wrong with it.
     pub error: Option<String>,
+    /// Whether a proof sheet is written beside an export.
+    pub has_proof: bool,
     /// Words looked for in the list of keys.
     pub search: String,
     /// The action that new keys are being pressed for.
