@@ -8,7 +8,7 @@ const RATE_OF_NOTHING: f64 = 30.0;
 const MAX_FRAMES: f64 = 3_456_000.0;
 
 /// Frames per second from the middle one of all steps from key to key. A usual rate (or 1000/1001 of it) is taken where
-/// the step is as near to it as times of 32 bits can tell; else a whole rate; else the step itself.
+/// the step, over the whole length, is as near to it as times of 32 bits can tell; else a whole rate; else the step itself.
 ///
 /// `tracks` are the key times of each sampler in seconds, strictly rising; `duration_secs` is the last of all keys.
 pub(super) fn frame_rate(tracks: &[&[f64]], duration_secs: f64) -> f64 {
@@ -21,21 +21,19 @@ pub(super) fn frame_rate(tracks: &[&[f64]], duration_secs: f64) -> f64 {
     let median = *steps.select_nth_unstable_by(middle, f64::total_cmp).1;
     // Two rounded times: each off by half of the spacing of 32-bit floats at the last key.
     let blur = duration_secs.abs() * f64::from(f32::EPSILON) + f64::from(f32::MIN_POSITIVE);
-    let step = refined(median, blur, tracks);
+    let (step, blur) = refined(median, blur, tracks).unwrap_or((median, blur));
     let rate = usual(step, blur).unwrap_or(1.0 / step);
     rate.min(MAX_FRAMES / duration_secs.max(f64::MIN_POSITIVE))
 }
 
-/// The mean step of the longest track, where it is even: its rounding shrinks with the number of keys.
-fn refined(median: f64, blur: f64, tracks: &[&[f64]]) -> f64 {
-    let longest = tracks.iter().max_by_key(|times| times.len());
-    match longest {
-        Some([first, .., last]) => {
-            let mean = (last - first) / (longest.map_or(2, |times| times.len()) - 1) as f64;
-            if (mean - median).abs() <= blur { mean } else { median }
-        }
-        _ => median,
-    }
+/// The mean step of the longest track and how far off it may be, where that track is even. The ends alone are rounded, so both
+/// shrink with the number of keys: a step of 0.008333 s is not a 120th, since after thousands of keys it would be one key off.
+fn refined(median: f64, blur: f64, tracks: &[&[f64]]) -> Option<(f64, f64)> {
+    let longest = tracks.iter().max_by_key(|times| times.len())?;
+    let [first, .., last] = longest else { return None };
+    let n_steps = (longest.len() - 1) as f64;
+    let mean = (last - first) / n_steps;
+    ((mean - median).abs() <= blur).then_some((mean, blur / n_steps))
 }
 
 fn usual(step: f64, blur: f64) -> Option<f64> {
@@ -77,6 +75,13 @@ mod tests {
         assert_eq!(frame_rate(&[&times], 1.25), 0.8);
         assert_eq!(frame_rate(&[&[0.5]], 0.5), RATE_OF_NOTHING);
         assert_eq!(frame_rate(&[], 0.0), RATE_OF_NOTHING);
+    }
+
+    #[test]
+    fn a_rate_that_would_drift_over_the_length_is_not_taken() {
+        let times: Vec<f64> = (0..885).map(|key| f64::from((key as f64 * 0.008_333) as f32)).collect();
+        let found = frame_rate(&[&times], *times.last().unwrap());
+        assert!((1.0 / found - 0.008_333).abs() < 1e-9, "found {found}");
     }
 
     #[test]
