@@ -267,11 +267,11 @@ fn the_lane_is_made_higher_by_its_divider() {
     assert!(bench.0.query_by_label("Divider below blend lane").is_none());
     bench.ask(Command::Blend(BlendCommand::Add(RUN, BlendKind::Mix)));
     let line = |bench: &Bench<'_>| bench.0.get_by_label("Divider below blend lane").rect().center();
-    let curves = |bench: &Bench<'_>| bench.0.get_by_label("Rotation curves chart").rect().height();
-    let (from, height) = (line(&bench), curves(&bench));
+    let curves = |bench: &Bench<'_>| bench.0.get_by_label("Rotation curves chart").rect().top();
+    let (from, top) = (line(&bench), curves(&bench));
     bench.drag(&[from, from + egui::vec2(0.0, 30.0)], Modifiers::NONE);
     assert!((line(&bench).y - from.y - 30.0).abs() < 2.0, "{from:?} {:?}", line(&bench));
-    assert!((height - curves(&bench) - 30.0).abs() < 2.0);
+    assert!((curves(&bench) - top - 30.0).abs() < 2.0, "{top} {}", curves(&bench));
     bench.0.get_by_label("Divider below blend lane").focus();
     bench.run();
     bench.0.key_press(Key::ArrowUp);

@@ -100,8 +100,14 @@ impl Window {
         let (serial, work) = (project.serial, self.bench.session.work);
         let known = findings.evaluated.as_ref();
         let behind = project.passes_behind(work);
-        let is_unchanged =
-            |passes: &[Pass]| known.is_some_and(|known| known.passes == passes && known.behind == behind);
+        // Another rest pose, or the file found again, is another source clip under the same passes.
+        let is_unchanged = |passes: &[Pass]| {
+            known.is_some_and(|known| {
+                Arc::ptr_eq(&known.evaluation.source, source)
+                    && known.passes == passes
+                    && known.behind == behind
+            })
+        };
         let is_tried = self.bench.is_trying();
         if !is_tried && self.bench.work().is_some_and(|work| is_unchanged(&work.passes)) {
             return;

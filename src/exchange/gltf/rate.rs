@@ -2,6 +2,8 @@
 
 /// Rates that files are made at, in frames per second.
 const USUAL_RATES: [f64; 11] = [24.0, 25.0, 30.0, 48.0, 50.0, 60.0, 72.0, 90.0, 100.0, 120.0, 240.0];
+/// Writers work times out in 32 bits, by some steps each of which rounds.
+const ROUNDINGS: f64 = 8.0;
 /// The rate of a clip without two keys.
 const RATE_OF_NOTHING: f64 = 30.0;
 /// More frames than this come from damaged times, not from motion: four hours at 240 a second.
@@ -33,7 +35,7 @@ fn refined(median: f64, blur: f64, tracks: &[&[f64]]) -> Option<(f64, f64)> {
     let [first, .., last] = longest else { return None };
     let n_steps = (longest.len() - 1) as f64;
     let mean = (last - first) / n_steps;
-    ((mean - median).abs() <= blur).then_some((mean, blur / n_steps))
+    ((mean - median).abs() <= blur).then_some((mean, blur.min(ROUNDINGS * blur / n_steps)))
 }
 
 fn usual(step: f64, blur: f64) -> Option<f64> {
