@@ -81,7 +81,8 @@ mod tests {
 
     #[test]
     fn a_rate_that_would_drift_over_the_length_is_not_taken() {
-        let times: Vec<f64> = (0..885_u16).map(|key| f64::from((f64::from(key) * 0.008_333) as f32)).collect();
+        let times: Vec<f64> =
+            (0..885_u16).map(|key| f64::from((f64::from(key) * 0.008_333) as f32)).collect();
         let found = frame_rate(&[&times], *times.last().unwrap());
         assert!((1.0 / found - 0.008_333).abs() < 1e-9, "found {found}");
     }
