@@ -54,7 +54,7 @@ pub enum Place<'a, F> {
 /// let mut worlds = [[[[0.0; TREE_ROWS]; 7]; TREE_TILES]; 2];
 /// batch::place_tree(Level::best(), &bones, [&turns[..]; TREE_TILES], &mut worlds);
 /// let [s, _, _, _, x, y, _] = worlds[1][3].map(|column| column[7]);
-/// assert!((s - 1.0).abs() + (x - 1.0).abs() + (y - 2.0).abs() < 1e-15);
+/// assert!((s - 1.0).abs() + (x - 1.0).abs() + (y - 2.0).abs() < 1e-14);
 /// ```
 ///
 /// # Panics
