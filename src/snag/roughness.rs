@@ -147,3 +147,45 @@ fn take(values: &mut [f64], share: f64) -> f64 {
     let index = ((values.len() - 1) as f64 * share).round() as usize;
     *values.select_nth_unstable_by(index, f64::total_cmp).1
 }
+
+#[cfg(test)]
+mod tests {
+    use glam::DVec3;
+
+    use super::*;
+    use crate::rotor::Bivector;
+
+    fn turn(degrees: f64, axis: DVec3) -> Rotor {
+        Rotor::from_plane_angles(Bivector::from_axis(axis.normalize() * degrees.to_radians()))
+    }
+
+    #[test]
+    fn median_and_spread_are_those_of_the_methods_page() {
+        // reference/method_checks.json `mad`, computed with numpy; an end has no residual of its own.
+        let data = [0.0, 12.1, 11.8, 12.4, 12.0, 55.0, 11.9, 12.2, 0.0];
+        let usual = usual(&data, 0..data.len(), 0..0);
+        assert!((usual.median - 12.1).abs() < 1e-9, "{usual:?}");
+        // Theirs has more digits of 1/Φ⁻¹(3/4) than ours.
+        assert!((usual.spread - 0.296_520_443_701).abs() < 1e-6, "{usual:?}");
+        let score = (55.0 - usual.median) / usual.spread;
+        assert!((score - 144.678).abs() < 1e-3, "{score}");
+    }
+
+    #[test]
+    fn the_residual_points_at_the_frame_that_is_off_as_on_the_methods_page() {
+        // reference/method_checks.json `spike_residual`, computed with scipy: 10° a frame, frame 4 off by 35°.
+        let axis = DVec3::new(0.2, 1.0, 0.1);
+        let poses: Vec<Rotor> = (0..9)
+            .map(|frame| {
+                let even = turn(10.0 * f64::from(frame), axis);
+                if frame == 4 { even * turn(35.0, DVec3::X) } else { even }
+            })
+            .collect();
+        let secs: Vec<f64> = (0..9).map(f64::from).collect();
+        let expected = [0.0, 0.0, 17.565_143, 35.0, 17.564_463, 0.0, 0.0];
+        for (key, expected) in (1..8).zip(expected) {
+            let found = residual(&poses, &secs, key, key - 1, key + 1).to_degrees();
+            assert!((found - expected).abs() < 2e-6, "frame {key}: {found}");
+        }
+    }
+}

@@ -171,6 +171,51 @@ fn worked_examples_of_the_methods_page() {
 }
 
 #[test]
+fn a_cubic_leaves_the_spline_it_was_written_from_as_far_as_the_methods_page_says() {
+    // Section 22 of reference/methods.md, `cubicspline_export_error`: why exports put keys in.
+    let Some(checks) = shared_json("reference/method_checks.json") else { return };
+    let check = &checks["cubicspline_export_error"];
+    let keys: Vec<Rotor> = list(&checks["key_set_K"]).iter().map(read_rotor).collect();
+    let times = [0.0, 1.0, 1.5, 3.0];
+    let spline = track(&times, &keys, PathKind::Spline);
+    // The cubic with the spline's own values and rates at so many times a segment; what it is off at most, in degrees.
+    let off = |segment: usize, parts: u32| {
+        let (from, to) = (times[segment], times[segment + 1]);
+        let cuts: Vec<f64> =
+            (0..=parts).map(|part| from + (to - from) * f64::from(part) / f64::from(parts)).collect();
+        let at: Vec<Motion> = cuts.iter().map(|time| spline.motion_at(*time)).collect();
+        let mut values: Vec<Rotor> = at.iter().map(|motion| motion.orientation).collect();
+        for key in 1..values.len() {
+            values[key] = values[key].aligned_to(values[key - 1]);
+        }
+        let mut cubic = track(&cuts, &values, PathKind::Cubic);
+        let tangent = |key: usize| {
+            let rate = at[key].rate;
+            (values[key] * Rotor::from_xyzw([rate.yz, rate.zx, rate.xy, 0.0])).scale(0.5)
+        };
+        cubic.tangents = Some((0..values.len()).map(|key| [tangent(key); 2]).collect());
+        let shares = (0..=2000_u32).map(|step| f64::from(step) / 2000.0);
+        let angles = shares.map(|share| {
+            let time = from + (to - from) * share;
+            cubic.at(time).turn_to(spline.at(time)).to_degrees()
+        });
+        (angles.fold(0.0, f64::max), tangent(0))
+    };
+    let tolerance = number(&check["tolerance"]);
+    let each = list(&check["max_deg_per_segment"]);
+    assert_eq!(each.len(), 3);
+    for (segment, expected) in each.iter().enumerate() {
+        assert_close!(off(segment, 1).0, number(expected), tolerance, "segment {segment}");
+    }
+    let first_tangent = off(1, 1).1;
+    assert_close!(first_tangent.to_xyzw(), numbers::<4>(&check["tangent_key1"]), 1e-6);
+    let halved = list(&check["last_segment_subdivided_1_2_4_8"]);
+    for (parts, expected) in [1, 2, 4, 8].into_iter().zip(halved) {
+        assert_close!(off(2, parts).0, number(expected), tolerance, "in {parts} parts");
+    }
+}
+
+#[test]
 fn even_knots_make_the_uniform_b_spline() {
     let keys: Vec<Rotor> = (0..6)
         .map(|i| Rotor::from_plane_angles(Bivector::new(f64::from(i).sin(), 0.4 * f64::from(i), -0.3)))
