@@ -392,18 +392,19 @@ fn turn_in_file(text: &str, joint: &str, frame: usize) -> glam::DMat3 {
     for line in text.lines() {
         let words: Vec<&str> = line.split_whitespace().collect();
         match words.as_slice() {
-            ["ROOT" | "JOINT", name] => own = (*name).to_owned(),
+            ["ROOT" | "JOINT", name] => (*name).clone_into(&mut own),
             ["CHANNELS", _, names @ ..] if own == joint => {
                 channels = names.iter().map(|name| (*name).to_owned()).collect();
                 break;
             }
-            ["CHANNELS", count, ..] => before += count.parse::<usize>().unwrap(),
+            ["CHANNELS", count, ..] => before += count.parse::<usize>().expect("a count"),
             _ => {}
         }
     }
     let rows = text.lines().skip_while(|line| !line.starts_with("Frame Time")).skip(1);
-    let row = rows.filter(|line| !line.trim().is_empty()).nth(frame).unwrap();
-    let numbers: Vec<f64> = row.split_whitespace().skip(before).map(|word| word.parse().unwrap()).collect();
+    let row = rows.filter(|line| !line.trim().is_empty()).nth(frame).expect("a row for each frame");
+    let numbers: Vec<f64> =
+        row.split_whitespace().skip(before).map(|word| word.parse().expect("a number")).collect();
     channels.iter().zip(numbers).fold(glam::DMat3::IDENTITY, |turn, (channel, degrees)| {
         turn * match channel.as_str() {
             "Xrotation" => glam::DMat3::from_rotation_x(degrees.to_radians()),
@@ -424,7 +425,7 @@ fn degrees_between(from: glam::DMat3, to: glam::DMat3) -> f64 {
 /// What the map tells when the pointer rests on a joint's row at a time.
 fn told_on_the_map(bench: &mut Bench<'_>, row: &str, secs: f64) -> String {
     // The row comes into view.
-    let joint = bench.window().bench().source().unwrap().skeleton.find(row);
+    let joint = bench.window().bench().source().expect("a clip").skeleton.find(row);
     bench.ask(Command::ChooseJoint(joint));
     let rows = bench.0.get_by_label("Turn map rows").rect();
     let row = bench.0.get_by_label(&format!("Map row {row}")).rect();
