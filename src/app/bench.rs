@@ -3,7 +3,7 @@
 use std::path::{Path, PathBuf};
 use std::sync::{Arc, Mutex};
 
-use crate::clip::Clip;
+use crate::clip::{Clip, KeyEdit};
 use crate::exchange::Source;
 use crate::limit::Limits;
 use crate::scene::{
@@ -297,6 +297,14 @@ impl Bench {
     /// The work that is looked at.
     pub fn work(&self) -> Option<&ClipWork> {
         self.project.as_ref()?.document().works.get(self.session.work)
+    }
+
+    /// The edits of the last pass, where it is on and made of edits of keys: what is done to keys by hand goes on there.
+    pub fn last_key_edits(&self) -> &[KeyEdit] {
+        match self.work().and_then(|work| work.passes.last()).filter(|pass| pass.on).map(|pass| &pass.step) {
+            Some(PassStep::Keys(keys)) => &keys.edits,
+            _ => &[],
+        }
     }
 
     /// Its source clip.

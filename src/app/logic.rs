@@ -14,6 +14,7 @@ mod playing;
 mod settings;
 mod snags;
 mod space;
+mod stretches;
 mod time;
 
 use egui::Context;

@@ -10,8 +10,8 @@ use egui::{Event, Key, Modifiers, PointerButton, Pos2, Vec2, vec2};
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use glam::DVec3;
 use turnwright::app::Start;
-use turnwright::app::commands::{Action, Command, CurveAction, CurveCommand};
-use turnwright::app::view_models::{CurveView, KeyChoice, RoomKey, TimeWindow, limit_room, seconds};
+use turnwright::app::commands::{Action, Command, CurveAction, CurveCommand, SpaceAction};
+use turnwright::app::view_models::{CurveView, KeyChoice, RoomKey, Stroke, TimeWindow, limit_room, seconds};
 use turnwright::clip::{Clip, FrameGrid, JointTracks, PathKind, RotationTrack, Spacing, Times};
 use turnwright::exchange::{ClipAddress, disk, gltf};
 use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
@@ -318,6 +318,34 @@ fn keys_are_copied_pasted_and_pasted_mirrored() {
 }
 
 #[test]
+fn keys_of_the_loop_are_chosen_cut_and_put_down_elsewhere() {
+    let mut desk = Desk::new();
+    for (secs, key) in [(0.4, Key::OpenBracket), (1.1, Key::CloseBracket)] {
+        desk.ask(Command::Scrub(secs));
+        desk.press(Modifiers::COMMAND, key);
+    }
+    desk.press(Modifiers::COMMAND | Modifiers::ALT, Key::A);
+    let joint = desk.joint(ARM);
+    assert_eq!(desk.window().bench().session.curves.keys.times(joint).len(), 2, "those at 0.5 and 1 s");
+    let steps = desk.steps();
+    // The desktop's own event for cutting.
+    desk.hold(Modifiers::COMMAND);
+    desk.bench.0.event(Event::Cut);
+    desk.bench.0.step();
+    desk.hold(Modifiers::NONE);
+    desk.run();
+    assert_eq!((desk.times(ARM), desk.steps()), (vec![0.0, 1.5, 2.0], steps + 1));
+    desk.ask(Command::Scrub(0.8));
+    desk.press(Modifiers::COMMAND, Key::V);
+    assert_eq!(desk.times(ARM), [0.0, 0.8, 1.3, 1.5, 2.0]);
+    assert_near(desk.degrees(ARM, 0.8)[0], 20.0, 1e-4);
+    assert_near(desk.degrees(ARM, 1.3)[0], 40.0, 1e-4);
+    desk.undo();
+    desk.undo();
+    assert_eq!(desk.times(ARM), [0.0, 0.5, 1.0, 1.5, 2.0]);
+}
+
+#[test]
 fn a_turn_out_of_its_plane_is_mirrored_the_other_way_round() {
     let mut desk = Desk::new();
     desk.ask(Command::Scrub(1.0));
@@ -530,6 +558,41 @@ fn a_captured_curve_is_pushed_softly_and_the_source_stays() {
 }
 
 #[test]
+fn the_reach_of_a_push_is_set_by_wheel_and_menu() {
+    let mut desk = Desk::new();
+    desk.choose("Trunk");
+    let reach = |desk: &Desk<'_>| desk.window().bench().session.falloff_secs;
+    desk.ask(Command::Curve(CurveCommand::SetFalloff(0.3)));
+    let window = desk.window().bench().session.window;
+    let chart = desk.bench.0.get_by_label("Rotation curves chart").rect();
+    desk.bench.0.hover_at(chart.center());
+    desk.hold(Modifiers::ALT);
+    desk.bench.0.event(Event::MouseWheel {
+        unit: egui::MouseWheelUnit::Point,
+        delta: vec2(0.0, 60.0),
+        phase: egui::TouchPhase::Move,
+        source: egui::MouseWheelSource::Wheel,
+        modifiers: Modifiers::ALT,
+    });
+    desk.bench.0.run_steps(20);
+    desk.hold(Modifiers::NONE);
+    assert!(reach(&desk) > 0.33, "{}", reach(&desk));
+    assert_eq!(desk.window().bench().session.window, window, "time is not zoomed");
+    let before = reach(&desk);
+    desk.ask(Command::Do(Action::Space(SpaceAction::LongerFalloff)));
+    let longer = reach(&desk);
+    assert!(longer > before, "{longer}");
+    desk.ask(Command::Do(Action::Space(SpaceAction::ShorterFalloff)));
+    assert!(reach(&desk) < longer, "{}", reach(&desk));
+    // A push by the keyboard takes it.
+    desk.ask(Command::Scrub(1.0));
+    desk.press(Modifiers::COMMAND | Modifiers::ALT, Key::ArrowUp);
+    let passes = desk.passes();
+    let [PassStep::Push(pass)] = passes.as_slice() else { panic!("{passes:?}") };
+    assert_near(pass.pushes[0].reach_secs, reach(&desk), 1e-9);
+}
+
+#[test]
 fn a_range_is_smoothed_and_reduced_as_passes_on_the_chosen_joints() {
     let mut desk = Desk::new();
     desk.choose("Trunk");
@@ -626,6 +689,25 @@ fn keys_of_a_file_with_rows_stay_rows_and_can_be_edited_again() {
     let turned = before.turn_to(desk.track(&name).at(grid.time(105))).to_degrees();
     assert!(turned > 0.2, "turned by {turned}°");
     assert!(desk.bench.0.get_by_label("Rotation curves chart").accesskit_node().label().is_some());
+}
+
+#[test]
+fn the_chart_tells_the_numbers_under_the_pointer() {
+    let mut desk = Desk::new();
+    let told = |desk: &mut Desk<'_>| -> Vec<String> {
+        let at = desk.pip(ARM, 1.0, "yz");
+        desk.bench.0.hover_at(at);
+        desk.run();
+        let value = desk.bench.0.get_by_label("Rotation curves chart").accesskit_node().value();
+        let lines = value.expect("it has a value while the pointer is there");
+        lines.split(", ").map(|line| line.split_whitespace().collect::<Vec<_>>().join(" ")).collect()
+    };
+    assert_eq!(told(&mut desk), ["1.000 s frame 30", "yz 40.00°", "zx 0.00°", "xy 0.00°"]);
+    let mut keys = KeyChoice::default();
+    keys.add(desk.joint(ARM), [1.0]);
+    desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+    desk.press(Modifiers::COMMAND | Modifiers::ALT, Key::ArrowUp);
+    assert_eq!(told(&mut desk)[1], "yz 41.00° was 40.00°");
 }
 
 #[test]
@@ -747,6 +829,100 @@ fn a_stretch_of_rows_is_shaped_on_in_its_own_pass() {
         _ => None,
     });
     assert_eq!(turns.next_back(), Some(2));
+    let changed = desk.track("LeftArm").changed_keys(&before);
+    assert!(changed.iter().all(|key| (101..140).contains(key)), "{changed:?}");
+}
+
+/// The share of the way at a share of the time, by halving along the cubic Bezier curve that the handles make: its definition.
+fn share_by_halving([[x1, y1], [x2, y2]]: [[f64; 2]; 2], time: f64) -> f64 {
+    let at =
+        |a: f64, b: f64, s: f64| 3.0 * (1.0 - s).powi(2) * s * a + 3.0 * (1.0 - s) * s * s * b + s.powi(3);
+    let (mut low, mut high) = (0.0, 1.0);
+    for _ in 0..60 {
+        let middle = f64::midpoint(low, high);
+        if at(x1, x2, middle) < time {
+            low = middle;
+        } else {
+            high = middle;
+        }
+    }
+    at(y1, y2, low)
+}
+
+/// What is played is compared with a slerp, the curve of the handles worked out here.
+#[test]
+fn handles_shape_the_spacing_of_a_stretch_of_rows() {
+    let Some(path) = shared("data/bvh/cmu_02_01_walk.bvh") else { return };
+    let mut desk = Desk::open(path, tempfile::tempdir().unwrap());
+    desk.choose("LeftArm");
+    let (before, name) = (desk.track("LeftArm"), "Spacing handle 1");
+    let grid = desk.window().bench().source().unwrap().grid.clone();
+    let (from, to) = (grid.time(100), grid.time(140));
+    let keys = keys_between(&desk, "LeftArm", from, to);
+    desk.ask(Command::Curve(CurveCommand::Choose(keys.clone())));
+    assert!(
+        desk.bench.0.query_by_label_contains(name).is_none(),
+        "captured motion has no spacing of its own"
+    );
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::S);
+    let steps = desk.steps();
+    let handle = desk.bench.0.get_by_label_contains(name).rect().center();
+    let check = |desk: &Desk<'_>, shown: Option<&turnwright::app::view_models::LocalCurves>, points| {
+        let after = desk.track("LeftArm");
+        for frame in 101..140 {
+            let share = share_by_halving(points, (frame - 100) as f64 / 40.0);
+            let expected = turnwright::rotor::slerp(before.at(from), before.at(to), share);
+            let off = after.at(grid.time(frame)).turn_to(expected).to_degrees();
+            assert!(off < 1e-3, "frame {frame} is {off}° off");
+            if let Some(shown) = shown {
+                let yz = expected.plane_angles().to_degrees()[0];
+                assert_near(shown.value(0, grid.time(frame)).unwrap(), yz, 0.05);
+            }
+        }
+        assert_eq!(after.times.len(), before.times.len(), "rows stay");
+    };
+    let given = |desk: &Desk<'_>| {
+        let passes = desk.passes();
+        let [PassStep::Keys(pass)] = passes.as_slice() else { panic!("one pass: {passes:?}") };
+        let spaces: Vec<Spacing> = pass
+            .edits
+            .iter()
+            .filter_map(|edit| match edit.change {
+                turnwright::clip::KeyChange::Space(_, spacing) => Some(spacing),
+                _ => None,
+            })
+            .collect();
+        let [Spacing::Own(handles)] = spaces.as_slice() else { panic!("one spacing: {spaces:?}") };
+        handles.points()
+    };
+    desk.drag(handle, vec2(25.0, 12.0), Modifiers::NONE, |desk| {
+        assert_eq!(desk.steps(), steps, "nothing is recorded yet");
+        // What is drawn while it is dragged is what letting go will give.
+        let shown = desk.window().bench().curve_hand.shown.clone().expect("drawn at once");
+        let Stroke::Keys(edits) = &shown.stroke else { panic!("{:?}", shown.stroke) };
+        let turnwright::clip::KeyChange::Space(_, spacing) = edits[0].change else { panic!("{edits:?}") };
+        let [local] = shown.locals.as_slice() else { panic!("{:?}", shown.locals.len()) };
+        check(desk, Some(local), spacing.points());
+    });
+    assert_eq!(desk.steps(), steps + 1);
+    let first = given(&desk);
+    assert!(first[0][0] > 0.4 && first[0][1] < 0.3, "{first:?}");
+    check(&desk, None, first);
+    desk.bench.0.get_by_label_contains("Spacing handle 2").focus();
+    desk.run();
+    for _ in 0..3 {
+        desk.press(Modifiers::NONE, Key::ArrowDown);
+    }
+    let second = given(&desk);
+    assert!(second[1][1] < first[1][1] - 0.05, "{second:?}");
+    check(&desk, None, second);
+    // The stretch is found again by the playhead, as a segment is.
+    desk.act(CurveAction::ChooseNone);
+    assert!(desk.bench.0.query_by_label_contains(name).is_none());
+    desk.ask(Command::Scrub(grid.time(120)));
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::Insert);
+    assert_eq!(desk.window().bench().session.curves.keys, keys);
+    desk.bench.0.get_by_label_contains(name);
     let changed = desk.track("LeftArm").changed_keys(&before);
     assert!(changed.iter().all(|key| (101..140).contains(key)), "{changed:?}");
 }

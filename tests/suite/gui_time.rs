@@ -1,14 +1,18 @@
 //! The turn map, the timeline, the passes and the list of snags, driven by accessible labels; what is asserted is document and session.
 
 use std::path::Path;
+use std::sync::Arc;
 
 use egui::{Event, Modifiers};
-use egui_kittest::kittest::Queryable as _;
+use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use turnwright::app::Start;
 use turnwright::app::commands::{Action, Command, Offer, TimeCommand};
 use turnwright::app::view_models::{HeatKind, SnagFilter, TimeChoice, snag_rows, snag_states};
-use turnwright::exchange::ClipAddress;
-use turnwright::scene::{ClipWork, PassStep, SmoothPass};
+use turnwright::clip::{Push, PushFrame};
+use turnwright::exchange::{ClipAddress, disk};
+use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
+use turnwright::rotor::{Bivector, Rotor};
+use turnwright::scene::{ClipWork, Edit, PassStep, PushPass, SmoothPass};
 use turnwright::snag::SnagKind;
 
 use crate::support;
@@ -379,4 +383,125 @@ fn the_history_names_each_step_and_goes_to_any() {
     assert!(bench.work().passes[0].on);
     bench.click("Open");
     assert_eq!((bench.work().passes.len(), bench.steps()), (0, 0));
+}
+
+/// The turn of a joint of a BVH file at a frame as a matrix, from the numbers of the file alone, and how its channels are named: every
+/// `Xrotation` turns about the x axis, the first named one outermost.
+fn turn_in_file(text: &str, joint: &str, frame: usize) -> glam::DMat3 {
+    let (mut own, mut channels, mut before) = (String::new(), Vec::new(), 0);
+    for line in text.lines() {
+        let words: Vec<&str> = line.split_whitespace().collect();
+        match words.as_slice() {
+            ["ROOT" | "JOINT", name] => (*name).clone_into(&mut own),
+            ["CHANNELS", _, names @ ..] if own == joint => {
+                channels = names.iter().map(|name| (*name).to_owned()).collect();
+                break;
+            }
+            ["CHANNELS", count, ..] => before += count.parse::<usize>().expect("a count"),
+            _ => {}
+        }
+    }
+    let rows = text.lines().skip_while(|line| !line.starts_with("Frame Time")).skip(1);
+    let row = rows.filter(|line| !line.trim().is_empty()).nth(frame).expect("a row for each frame");
+    let numbers: Vec<f64> =
+        row.split_whitespace().skip(before).map(|word| word.parse().expect("a number")).collect();
+    channels.iter().zip(numbers).fold(glam::DMat3::IDENTITY, |turn, (channel, degrees)| {
+        turn * match channel.as_str() {
+            "Xrotation" => glam::DMat3::from_rotation_x(degrees.to_radians()),
+            "Yrotation" => glam::DMat3::from_rotation_y(degrees.to_radians()),
+            "Zrotation" => glam::DMat3::from_rotation_z(degrees.to_radians()),
+            _ => glam::DMat3::IDENTITY,
+        }
+    })
+}
+
+/// The angle between two turns in degrees, by the trace of the matrix that leads from one to the other.
+fn degrees_between(from: glam::DMat3, to: glam::DMat3) -> f64 {
+    let between = from.transpose() * to;
+    let trace = between.x_axis.x + between.y_axis.y + between.z_axis.z;
+    (0.5 * (trace - 1.0)).clamp(-1.0, 1.0).acos().to_degrees()
+}
+
+/// What the map tells when the pointer rests on a joint's row at a time.
+fn told_on_the_map(bench: &mut Bench<'_>, row: &str, secs: f64) -> String {
+    // The row comes into view.
+    let joint = bench.window().bench().source().expect("a clip").skeleton.find(row);
+    bench.ask(Command::ChooseJoint(joint));
+    let rows = bench.0.get_by_label("Turn map rows").rect();
+    let row = bench.0.get_by_label(&format!("Map row {row}")).rect();
+    let share = bench.window().bench().session.window.share(secs);
+    bench.0.hover_at(egui::pos2(rows.left() + rows.width() * share as f32, row.center().y));
+    bench.run();
+    bench.0.get_by_label("Turn map rows").accesskit_node().value().unwrap_or_default()
+}
+
+/// Compared with the numbers of the file, multiplied out here.
+#[test]
+fn the_map_tells_what_lies_under_the_pointer() {
+    let Some(path) = support::shared("data/bvh/cmu_02_01_walk.bvh") else { return };
+    let text = String::from_utf8(disk::read(&path).unwrap()).unwrap();
+    let mut bench = tall(of_file(&path));
+    let clip = bench.window().bench().source().unwrap().clone();
+    let joint = clip.skeleton.find("LeftForeArm").expect("an arm");
+    for frame in [40_usize, 171, 300] {
+        let secs = clip.grid.time(frame);
+        let [before, now] = [frame - 1, frame].map(|frame| turn_in_file(&text, "LeftForeArm", frame));
+        let rate = degrees_between(before, now) / (secs - clip.grid.time(frame - 1));
+        let told = told_on_the_map(&mut bench, "LeftForeArm", secs);
+        let place = format!("LeftForeArm, {secs:.3} s  frame {frame}, ");
+        let own = told.strip_prefix(&place).unwrap_or_else(|| panic!("{told}"));
+        let own: f64 = own.split(' ').next().unwrap().parse().unwrap();
+        assert!(own > 1.0 && (own - rate).abs() < 0.51 + 0.02 * rate, "{told}, expected {rate:.1}");
+    }
+    // What was changed by ten degrees is told so, whatever it was before.
+    let middle = clip.grid.time(171);
+    let push = Push {
+        joint,
+        center_secs: middle,
+        reach_secs: 0.5,
+        turn: Bivector::new(0.0, 10_f64.to_radians(), 0.0),
+        frame: PushFrame::Own,
+    };
+    let step = PushPass { pushes: vec![push] }.into();
+    bench.ask(Command::Edit(Edit::AddPass { work: 0, step, at: 0 }));
+    bench.act(Action::HeatChange);
+    let told = told_on_the_map(&mut bench, "LeftForeArm", middle);
+    assert!(told.ends_with("frame 171, 10.0° from the source"), "{told}");
+    let told = told_on_the_map(&mut bench, "LeftForeArm", clip.grid.time(300));
+    assert!(told.ends_with("frame 300, 0° from the source"), "{told}");
+    bench.undo();
+
+    // A cone of half a right angle about the rest pose: the limb's way off its rest direction is what it uses.
+    let limb = clip.skeleton.joints()[clip.skeleton.children(joint)[0]].rest.translation.normalize();
+    let half = 45_f64.to_radians();
+    let range =
+        Range { swing: SwingLimit::Cone { half_rad: half }, twist: Interval::from_degrees(-170.0, 170.0) };
+    let limit = JointLimit::new(Rotor::IDENTITY, limb, limb.any_orthonormal_vector(), range);
+    let limits = Limits { title: "test".to_owned(), joints: [(joint, limit)].into() };
+    bench.ask(Command::Edit(Edit::SetLimits { work: 0, limits: Some(Arc::new(limits)) }));
+    bench.act(Action::HeatLimitUse);
+    let told = told_on_the_map(&mut bench, "LeftForeArm", middle);
+    let swing = (turn_in_file(&text, "LeftForeArm", 171) * limb).angle_between(limb);
+    let own = told.split("frame 171, ").nth(1).and_then(|words| words.strip_suffix(" % of its limit"));
+    let own: f64 = own.unwrap_or_else(|| panic!("{told}")).parse().unwrap();
+    // Colours are kept in steps of a few percent.
+    assert!(
+        (own - 100.0 * swing / half).abs() < 0.06 * own + 1.0,
+        "{told}, expected {}",
+        100.0 * swing / half
+    );
+    let told = told_on_the_map(&mut bench, "RightForeArm", middle);
+    assert!(told.ends_with("no limit"), "{told}");
+
+    // A folded row tells its hottest joint, a mark the snag under it.
+    bench.act(Action::FoldLimbs);
+    let folded: Vec<usize> = bench.window().bench().session.folded.iter().copied().collect();
+    let told = told_on_the_map(&mut bench, clip.skeleton.label(folded[0]), middle);
+    assert!(told.contains("(hottest of "), "{told}");
+    let mut bench = tall(Start::Demo);
+    bench.ask(Command::ChooseSnag(0));
+    let snag = bench.window().bench().snags()[0].clone();
+    let name = bench.window().bench().source().unwrap().skeleton.label(snag.joint).to_owned();
+    let told = told_on_the_map(&mut bench, &name, snag.first_secs.midpoint(snag.last_secs));
+    assert!(told.ends_with(&format!(", {} {}, open", snag.kind.letter(), snag.kind)), "{told}");
 }

@@ -16,7 +16,7 @@ use crate::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
 use crate::mend::{SurveyOptions, apply_all, survey};
 use crate::rotor::{Bivector, EulerOrder, Rotor};
 use crate::scene::{
-    KeysPass, LimitsPass, NoOthers, PassKind, PushPass, ReducePass, ResamplePass, SmoothPass,
+    KeysPass, LimitsPass, LoopPass, NoOthers, PassKind, PushPass, ReducePass, ResamplePass, SmoothPass,
 };
 use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
 use crate::snag::{SnagKind, Unwatched};
@@ -45,6 +45,7 @@ pub(super) fn pass_title(subject: Subject) -> &'static str {
         Subject::Resample => "Another rate",
         Subject::Limits => "Joint limits",
         Subject::Blend => "Blend",
+        Subject::Loop => "Loop",
         Subject::Retarget => "Retarget",
     }
 }
@@ -65,6 +66,7 @@ pub(super) fn pass_words(subject: Subject) -> &'static str {
             "Joins another clip behind this one, goes between both by a weight, or lays its difference over this one. Steps \
              can be brought into time with each other."
         }
+        Subject::Loop => LoopPass::default().explanation(),
         Subject::Retarget => {
             "Lets the figure of another file make the turns of this one. Rest poses are compared by where limbs point, paths \
              are scaled by the legs."
@@ -247,6 +249,9 @@ pub(super) fn example(subject: Subject) -> Example {
         Subject::Reduce => plain(of_angles(angle), &ReducePass::within(0.04), true),
         Subject::Resample => plain(of_angles(angle), &ResamplePass { rate: 4.0 }, true),
         Subject::Limits => plain(of_angles(angle), &LimitsPass::new(Arc::new(limits())), false),
+        Subject::Loop => {
+            plain(faulty(SnagKind::Seam).0, &LoopPass { rounds: 2, ..LoopPass::default() }, false)
+        }
         Subject::Blend | Subject::Retarget => {
             let (one, other) = (of_angles(angle), of_angles(|frame| 0.4 * wave(frame, 0.9) - 0.3));
             let mask = Mask::all(&one.skeleton);

@@ -49,7 +49,8 @@ fn curves(
         rows.iter().flat_map(|(points, ..)| points.iter().map(|[_, value]| *value)).filter(|v| v.is_finite())
     };
     let (low, high) = (values().fold(f64::INFINITY, f64::min), values().fold(f64::NEG_INFINITY, f64::max));
-    let duration = example.before.duration_secs.max(1e-9);
+    // A loop goes on where the clip before has ended.
+    let duration = example.before.duration_secs.max(example.after.duration_secs).max(1e-9);
     let pad = 10.0 * scale;
     let (left, right) = (pad, width as f32 - pad);
     // Room for the words below.
@@ -96,8 +97,8 @@ fn legend(image: &mut Image, entries: [(&str, crate::raster::Color); 2], theme: 
         let (line, thickness) = ((12.0 * scale) as i32, (2.0 * scale).max(1.0) as i32);
         image.fill_rect(left as i32, (top + 6.0 * scale) as i32, line, thickness, ink);
         let style = TextStyle::words(11.0 * scale, theme.text_faint);
-        left = draw_text(image, words, Vec2::new(left + 16.0 * scale, top), &style);
-        left += 14.0 * scale;
+        let width = draw_text(image, words, Vec2::new(left + 16.0 * scale, top), &style);
+        left += width + 30.0 * scale;
     }
 }
 

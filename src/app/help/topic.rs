@@ -16,12 +16,13 @@ pub enum Subject {
     Resample,
     Limits,
     Blend,
+    Loop,
     Retarget,
 }
 
 impl Subject {
     /// The passes, apart from mends.
-    pub const PASSES: [Self; 8] = [
+    pub const PASSES: [Self; 9] = [
         Self::Smooth,
         Self::Push,
         Self::Keys,
@@ -29,6 +30,7 @@ impl Subject {
         Self::Reduce,
         Self::Resample,
         Self::Blend,
+        Self::Loop,
         Self::Retarget,
     ];
 }

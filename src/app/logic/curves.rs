@@ -8,13 +8,12 @@ use super::super::commands::{CurveAction, CurveCommand};
 use super::super::curve_hand::ShownStroke;
 use super::super::panels::Message;
 use super::super::view_models::{
-    CurveKey, CurveSet, Grip, KeyBase, KeyChoice, KeyDrag, Stretch, Stroke, counted, fitted_values, key_at,
-    local_curves, stretches, with_more, with_more_pushes,
+    CurveKey, CurveSet, Grip, KeyBase, KeyChoice, KeyDrag, Stroke, counted, fitted_values, key_at,
+    local_curves, with_more, with_more_pushes, with_shaping,
 };
 use super::super::window::Window;
 use crate::clip::{
-    Clip, CopiedKeys, KeyChange, KeyEdit, MeantTurn, NewKey, PathKind, RotationTrack, Smoothing, Spacing,
-    Stored,
+    Clip, CopiedKeys, KeyChange, KeyEdit, NewKey, PathKind, RotationTrack, Smoothing, Spacing, Stored,
 };
 use crate::scene::{ClipWork, Edit, KeysPass, PassStep, PushPass, ReducePass, Scope, SmoothPass};
 use crate::skeleton::Mirror;
@@ -23,10 +22,6 @@ use crate::skeleton::Mirror;
 const REACH_SECS: [f64; 2] = [0.02, 30.0];
 /// So much a key on the keyboard turns, degrees.
 const STEP_DEG: f64 = 1.0;
-/// Told where a path or a spacing would change nothing.
-const NOTHING_TO_SHAPE: &str = "There is no segment here that a path could shape. It needs two keys with frames between them; \
-                                where a key stands at each frame, choose a stretch of keys first: by a drag along the lane below \
-                                the curves";
 /// Tells the strokes of this area from those of others.
 const STROKE: u64 = 0x4355_5256_0000_0000;
 
@@ -115,7 +110,7 @@ impl Window {
         }
     }
 
-    fn choose_keys(&mut self, keys: KeyChoice) {
+    pub(super) fn choose_keys(&mut self, keys: KeyChoice) {
         self.bench.session.curves.keys = keys;
         self.bench.curve_hand.serial += 1;
     }
@@ -137,7 +132,7 @@ impl Window {
         Some(project.library().evaluate_with(work, &passes)?.result)
     }
 
-    fn key_base(&mut self) -> Option<KeyBase> {
+    pub(super) fn key_base(&mut self) -> Option<KeyBase> {
         let clip = self.settled_result()?;
         // Numbers of an older result would undo what was done since.
         let of_now = |curves: &&FromClips<CurveKey, Arc<CurveSet>>| {
@@ -197,9 +192,13 @@ impl Window {
         choice: KeyChoice,
         is_trial: bool,
     ) {
+        let seen = match &stroke {
+            Stroke::Keys(edits) => Stroke::Keys(with_shaping(&base.clip, self.bench.last_key_edits(), edits)),
+            Stroke::Pushes(_) => stroke.clone(),
+        };
         let local = |joint: usize| {
             let known = base.sets.iter().find(|set| set.joint == joint);
-            local_curves(&base.clip, &self.bench.curve_key(joint), &stroke, known.map(|set| &**set))
+            local_curves(&base.clip, &self.bench.curve_key(joint), &seen, known.map(|set| &**set))
         };
         let shown = self.bench.session.joints();
         let locals = stroke.joints().into_iter().filter(|joint| shown.contains(joint)).filter_map(local);
@@ -252,7 +251,7 @@ impl Window {
         self.show_stroke(base, stroke, None, choice, false);
     }
 
-    fn commit_keys(&mut self, base: &KeyBase, edits: Vec<KeyEdit>, label: String) {
+    pub(super) fn commit_keys(&mut self, base: &KeyBase, edits: Vec<KeyEdit>, label: String) {
         let choice = base.choice.clone();
         self.commit_stroke(base, Stroke::Keys(edits), choice, label, None);
     }
@@ -288,7 +287,7 @@ impl Window {
             }
         }
         if edits.is_empty() {
-            self.tell(Message::done("There is a key at the playhead already".to_owned()));
+            self.tell(Message::note("There is a key at the playhead already".to_owned()));
             self.choose_keys(choice);
             return;
         }
@@ -395,21 +394,6 @@ impl Window {
         self.choose_keys(choice);
     }
 
-    fn choose_segment_here(&mut self) {
-        let Some(clip) = self.bench.result().cloned() else { return };
-        let Some(joint) = self.bench.session.joint else { return };
-        let now = self.bench.session.playback.playhead_secs;
-        let track = clip.rotation(joint).filter(|track| !track.times.is_empty());
-        let fits =
-            |track: &RotationTrack, start: f64| !stretches(joint, track, &clip.grid, &[start]).is_empty();
-        let start = track.and_then(|track| segment_at(track, now).filter(|&start| fits(track, start)));
-        if start.is_none() {
-            self.tell(Message::done(NOTHING_TO_SHAPE.to_owned()));
-        }
-        self.bench.session.curves.segment = start.map(|secs| (joint, secs));
-        self.bench.curve_hand.serial += 1;
-    }
-
     fn add_neighbour(&mut self, below: bool) {
         let Some(clip) = self.bench.result() else { return };
         let listed: Vec<usize> = clip.skeleton.listed().collect();
@@ -440,7 +424,7 @@ impl Window {
         } else if session.more_joints.len() + 1 < MOST {
             session.more_joints.push(joint);
         } else {
-            self.tell(Message::done(format!("At most {MOST} joints can be chosen at once")));
+            self.tell(Message::note(format!("At most {MOST} joints can be chosen at once")));
         }
         self.bench.curve_hand.let_go();
     }
@@ -479,7 +463,7 @@ impl Window {
             (None, None) => return,
         };
         if !base.measure(self.bench.session.joint.unwrap_or_default()).can_move() {
-            self.tell(Message::done(
+            self.tell(Message::note(
                 "These curves can't be moved: look at plane angles, or swing and twist".to_owned(),
             ));
             return;
@@ -507,111 +491,6 @@ impl Window {
         self.commit_stroke(&base, stroke, choice, label, Some(3));
     }
 
-    /// What a path, a spacing or turns are meant for: the chosen segment, else what lies between the chosen keys, else the segments that the
-    /// playhead is in, and in captured motion the chosen stretch of time.
-    fn meant_stretches(&self, base: &KeyBase) -> Vec<Stretch> {
-        let session = &self.bench.session;
-        let of = |joint: usize, times: &[f64]| {
-            let track = base.clip.rotation(joint).filter(|track| !track.times.is_empty());
-            track.map_or_else(Vec::new, |track| stretches(joint, track, &base.clip.grid, times))
-        };
-        if let Some((joint, secs)) = session.curves.segment {
-            return of(joint, &[secs]);
-        }
-        if !session.curves.keys.is_empty() {
-            return session.curves.keys.rows().flat_map(|(joint, times)| of(joint, times)).collect();
-        }
-        let now = session.playback.playhead_secs;
-        let here = |joint: usize| {
-            let Some(track) = base.clip.rotation(joint) else { return Vec::new() };
-            let own = segment_at(track, now).map_or_else(Vec::new, |start| of(joint, &[start]));
-            match self.chosen_span().filter(|_| own.is_empty()) {
-                Some([from, to]) => {
-                    let within = |secs: &f64| (from - 1e-9..=to + 1e-9).contains(secs);
-                    of(joint, &track.times.iter().filter(within).collect::<Vec<f64>>())
-                }
-                None => own,
-            }
-        };
-        session.joints().into_iter().flat_map(here).collect()
-    }
-
-    /// Changes what is meant, as one step; `change` gets a segment's path and turns.
-    fn change_segments(
-        &mut self,
-        label: &str,
-        change: impl Fn(Vec<f64>, PathKind, MeantTurn) -> Option<KeyChange>,
-    ) {
-        let Some(base) = self.key_base() else { return };
-        let meant = self.meant_stretches(&base);
-        let last = self.bench.work().and_then(|work| work.passes.last()).filter(|pass| pass.on);
-        let edits_of = |step: &PassStep| match step {
-            PassStep::Keys(own) => own.edits.clone(),
-            _ => Vec::new(),
-        };
-        // Once the keys have given way the same stretch is shaped on, whatever rows the file keeps.
-        let known = last.map_or_else(Vec::new, |pass| edits_of(&pass.step));
-        let is_free = known.iter().all(|edit| !matches!(edit.change, KeyChange::Move(_)));
-        let goes_on = is_free && meant.iter().all(|own| own.is_known(&known));
-        let known = if goes_on { known } else { Vec::new() };
-        let mut edits: Vec<KeyEdit> = Vec::new();
-        for own in &meant {
-            let Some(track) = base.clip.rotation(own.joint) else { continue };
-            let (kind, turn) = own.path_and_turn(track, &known);
-            let Some(change) = change(vec![own.start_secs], kind, turn) else { continue };
-            edits.extend(own.clearing().filter(|_| !goes_on));
-            edits.push(KeyEdit { joint: own.joint, change });
-        }
-        if edits.is_empty() {
-            self.tell(Message::done(NOTHING_TO_SHAPE.to_owned()));
-            return;
-        }
-        let gone: usize = meant.iter().map(|own| own.gone_secs.len()).sum();
-        let label = if gone == 0 {
-            label.to_owned()
-        } else {
-            format!("{label}, over {}", counted(gone + 2 * meant.len(), "key"))
-        };
-        self.commit_keys(&base, edits, label);
-        self.choose_shaped(&base, &meant);
-    }
-
-    /// Where keys have given way the segment that is left is chosen, so that its spacing can be drawn; rows of a file stay, and stay
-    /// chosen.
-    fn choose_shaped(&mut self, base: &KeyBase, meant: &[Stretch]) {
-        let is_row_track =
-            |own: &Stretch| base.clip.rotation(own.joint).is_some_and(|track| has_rows(&base.clip, track));
-        if let [only] = meant
-            && !only.gone_secs.is_empty()
-            && !is_row_track(only)
-        {
-            self.bench.session.curves.keys = KeyChoice::default();
-            self.bench.session.curves.segment = Some((only.joint, only.start_secs));
-        }
-    }
-
-    fn set_path(&mut self, kind: PathKind) {
-        self.change_segments(&format!("Path: {}", kind.name()), |starts, _, _| {
-            Some(KeyChange::Path(starts, kind))
-        });
-    }
-
-    fn set_spacing(&mut self, spacing: Spacing) {
-        let label = format!("Spacing: {}", spacing_name(spacing));
-        self.change_segments(&label, |starts, _, _| Some(KeyChange::Space(starts, spacing)));
-    }
-
-    fn set_turns(&mut self, label: &str, change: impl Fn(i32) -> i32) {
-        self.change_segments(label, |starts, kind, own| {
-            let whole = change(own.whole());
-            let turn = match own.plane() {
-                Some(plane) => MeantTurn::in_plane(whole, plane),
-                None => MeantTurn::new(whole),
-            };
-            Some(KeyChange::Turn(starts, turn.ok().filter(|_| kind.takes_turns())?))
-        });
-    }
-
     /// Where smoothing and reduction act: over the chosen keys, else over the chosen stretch of time or the loop, else everywhere; on
     /// the chosen joints.
     fn range_scope(&self) -> Scope {
@@ -622,7 +501,7 @@ impl Window {
     }
 
     /// The chosen stretch of time, else the loop.
-    fn chosen_span(&self) -> Option<[f64; 2]> {
+    pub(super) fn chosen_span(&self) -> Option<[f64; 2]> {
         let session = &self.bench.session;
         session.choice.span_secs.or(session.playback.range.map(|(from, to)| [from, to]))
     }
@@ -653,24 +532,6 @@ impl Window {
     }
 }
 
-/// The first key's time of the segment that a time lies in; the last segment at the end.
-fn segment_at(track: &RotationTrack, secs: f64) -> Option<f64> {
-    let last = track.keys.len().checked_sub(2)?;
-    let key = (0..=last).rev().find(|&key| track.times.at(key) <= secs + 1e-9);
-    Some(track.times.at(key.unwrap_or(0)))
-}
-
-/// The word for a spacing.
-fn spacing_name(spacing: Spacing) -> &'static str {
-    match spacing {
-        Spacing::Even => "even",
-        Spacing::EaseIn => "ease in",
-        Spacing::EaseOut => "ease out",
-        Spacing::EaseBoth => "ease in and out",
-        Spacing::Own(_) => "own handles",
-    }
-}
-
 /// The edit of the document that does a stroke: more for the last pass, where that is one of the kind, else a new pass behind all
 /// others, which works on what was seen.
 fn edit_of(work: usize, own: &ClipWork, base: &Clip, stroke: &Stroke) -> Edit {
@@ -695,7 +556,7 @@ fn edit_of(work: usize, own: &ClipWork, base: &Clip, stroke: &Stroke) -> Edit {
 }
 
 /// Whether a joint's track keeps the rows of a file, one for each frame.
-fn has_rows(clip: &Clip, track: &RotationTrack) -> bool {
+pub(super) fn has_rows(clip: &Clip, track: &RotationTrack) -> bool {
     track.stored != Stored::Rotors && track.keys.len() >= clip.grid.count()
 }
 

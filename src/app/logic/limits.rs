@@ -10,7 +10,7 @@ use super::super::window::Window;
 use super::answers::Answer;
 use crate::clip::Clip;
 use crate::exchange::limits;
-use crate::limit::{LearnOptions, Limits, adult, learned};
+use crate::limit::{LearnOptions, Limits, adult, learned, limb_direction};
 use crate::mend::{SurveyOptions, survey};
 use crate::scene::{Edit, SearchChoice};
 use crate::snag::Progress;
@@ -41,7 +41,7 @@ impl LimitsFrom {
                 let found = survey(clip, &SurveyOptions::default(), watch).ok()?;
                 let mut own = learned(&found.mended, &LearnOptions::default());
                 LEARNED.clone_into(&mut own.title);
-                Ok((Arc::new(own), None))
+                Ok((Arc::new(own), without_length(&found.mended)))
             }
             Self::File(path) => match limits::read(path).and_then(|file| file.fit(&clip.skeleton)) {
                 Ok((own, missing)) => {
@@ -56,6 +56,19 @@ impl LimitsFrom {
             },
         })
     }
+}
+
+/// Tells which joints turn and have no length anywhere: without a limb swing can't be told from twist, so that no limit can be learned.
+fn without_length(clip: &Clip) -> Option<String> {
+    let turns = |joint: usize| clip.rotation(joint).is_some_and(|track| !track.keys.is_empty());
+    let skeleton = &clip.skeleton;
+    let bare = skeleton.listed().filter(|&joint| {
+        skeleton.parent_joint(joint).is_some() && turns(joint) && limb_direction(skeleton, joint).is_none()
+    });
+    let names: Vec<&str> = bare.map(|joint| skeleton.label(joint)).collect();
+    let (first, more) = (names.first()?, names.len() - 1);
+    let whose = if more == 0 { (*first).to_owned() } else { format!("{first} and {more} more") };
+    Some(format!("No limit was learned for {whose}: a joint without a length has no swing and twist"))
 }
 
 impl Window {

@@ -1,13 +1,16 @@
 //! The joint sheet: the tree of joints, and the numbers of the chosen one at the playhead.
 
-use egui::{Align2, ComboBox, FontId, Rect, Role, ScrollArea, Sense, Ui, UiBuilder, WidgetInfo, pos2, vec2};
+use egui::{
+    Align2, ComboBox, FontId, Rangef, Rect, Role, ScrollArea, Sense, Ui, UiBuilder, WidgetInfo, pos2, vec2,
+};
 
 use super::super::commands::Command;
 use super::super::theme::INSET;
 use super::super::view_models::{
-    JointNumbers, RotationNumbers, SnagState, counted, degrees, degrees_fixed, joint_numbers, tree_rows,
+    JointNumbers, RotationNumbers, Shared, SnagState, counted, degrees, degrees_fixed, joint_numbers,
+    tree_rows,
 };
-use super::super::widgets::{Icon, focus_ring, hint, paint_icon, strip};
+use super::super::widgets::{Icon, focus_ring, hint, name_ui, paint_icon, strip};
 use super::{Scope, choose_joint};
 
 const TREE_ROW: f32 = 20.0;
@@ -45,6 +48,7 @@ pub(crate) fn joint_sheet_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
 fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     let look = scope.look;
     let rows = tree_rows(&clip.skeleton, &scope.bench.session.folded);
+    let shared = Shared::of(clip.skeleton.listed().map(|joint| clip.skeleton.label(joint)));
     let mut open = vec![0_usize; clip.skeleton.len()];
     for (snag, &state) in scope.bench.snags().iter().zip(scope.states.iter()) {
         if state == SnagState::Open
@@ -55,6 +59,9 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     }
     ui.spacing_mut().item_spacing.y = 0.0;
     let area = ui.max_rect();
+    // Deep trees must leave room for the names.
+    let deepest = rows.iter().map(|row| row.depth).max().unwrap_or(0);
+    let step = (area.width() * 0.3 / deepest.max(1) as f32).min(9.0);
     let scrolls = scope.pictures.scroll_to_joint;
     ScrollArea::vertical().id_salt("joint tree").auto_shrink(false).show_viewport(ui, |ui, viewport| {
         let top = ui.max_rect().top();
@@ -86,9 +93,7 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
             if response.hovered() {
                 scope.out.push(Command::HoverJoint(row.joint));
             }
-            // Deep trees must not run out of the panel: beyond some levels they move in no further.
-            let indent = (row.depth as f32 * 9.0).min(area.width() * 0.35);
-            let left = bounds.left() + 5.0 + indent;
+            let left = bounds.left() + 5.0 + row.depth as f32 * step;
             if row.has_children {
                 let fold = Rect::from_min_size(pos2(left, bounds.top()), vec2(16.0, TREE_ROW));
                 let response = ui.interact(fold, ui.scope_id().with(("fold", row.joint)), Sense::click());
@@ -114,17 +119,18 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
                 right -= width + 6.0;
             }
             let ink = if is_chosen { look.text } else { look.text.gamma_multiply(0.88) };
-            let mut job =
-                egui::text::LayoutJob::simple_singleline(name.to_owned(), FontId::proportional(13.0), ink);
-            job.wrap = egui::text::TextWrapping::truncate_at_width((right - left - 18.0).max(12.0));
-            let galley = ui.painter().layout_job(job);
-            ui.painter().galley(pos2(left + 18.0, bounds.center().y - galley.size().y / 2.0), galley, ink);
+            let words =
+                Rect::from_x_y_ranges(Rangef::new(left + 18.0, right.max(left + 30.0)), bounds.y_range());
+            let is_cut = name_ui(ui.painter(), words, name, shared, &FontId::proportional(13.0), ink);
             focus_ring(ui, &response);
             if response.clicked() {
                 scope.out.push(choose_joint(ui, row.joint));
             }
             if response.double_clicked() && row.has_children {
                 scope.out.push(Command::Fold(row.joint));
+            }
+            if is_cut {
+                response.on_hover_text(name);
             }
         }
     });
@@ -136,8 +142,18 @@ fn sheet_panel(ui: &mut Ui, scope: &mut Scope<'_>, numbers: &JointNumbers) {
     ScrollArea::vertical().id_salt("joint numbers").auto_shrink(false).show(ui, |ui| {
         egui::Frame::NONE.inner_margin(egui::Margin::symmetric(INSET as i8 + 2, 6)).show(ui, |ui| {
             ui.spacing_mut().item_spacing.y = 1.0;
-            let title = egui::RichText::new(&numbers.label).size(15.0).color(look.text);
-            ui.add(egui::Label::new(title).truncate());
+            let (title, response) = ui.allocate_exact_size(vec2(ui.available_width(), 20.0), Sense::hover());
+            response.widget_info(|| WidgetInfo::labeled(Role::Label, true, &numbers.label));
+            if name_ui(
+                ui.painter(),
+                title,
+                &numbers.label,
+                Shared::default(),
+                &FontId::proportional(15.0),
+                look.text,
+            ) {
+                response.on_hover_text(&numbers.label);
+            }
             let parent =
                 numbers.parent.as_ref().map_or("no parent".to_owned(), |parent| format!("below {parent}"));
             let words = format!("{parent} · {} · {}", counted(numbers.keys, "key"), numbers.path);

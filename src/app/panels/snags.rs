@@ -8,8 +8,8 @@ use egui::{
 use super::super::commands::{Action, Command};
 use super::super::jobs::Slot;
 use super::super::theme::{INSET, Look, ROW_HEIGHT};
-use super::super::view_models::{SnagFilter, SnagOrder, SnagRow, SnagState};
-use super::super::widgets::{action_button, focus_ring, hint, letter_plate, strip, tooltip_text};
+use super::super::view_models::{Shared, SnagFilter, SnagOrder, SnagRow, SnagState};
+use super::super::widgets::{action_button, focus_ring, hint, letter_plate, name_ui, strip, tooltip_text};
 use super::Scope;
 use super::menus::entry_ui;
 use crate::scene::SnagMark;
@@ -196,7 +196,8 @@ fn edges(left: f32, width: f32) -> Edges {
     let columns = COLUMNS.each_ref().map(|column| {
         let start = at;
         at += if column.width == 0.0 { joint_width } else { column.width };
-        [start, at - 8.0]
+        // A column that would be cut off is left away.
+        if at - 8.0 > left + width { [start, start] } else { [start, at - 8.0] }
     });
     Edges { columns, words: has_words.then_some([at, left + width - INSET]) }
 }
@@ -206,7 +207,8 @@ fn table_ui(ui: &mut Ui, rows: &[SnagRow], scope: &mut Scope<'_>) {
     let area = ui.available_rect_before_wrap();
     let (header, _) = ui.allocate_exact_size(vec2(area.width(), ROW_HEIGHT), Sense::hover());
     let edges = edges(header.left(), header.width());
-    for (column, [left, right]) in COLUMNS.iter().zip(edges.columns) {
+    for (column, [left, right]) in COLUMNS.iter().zip(edges.columns).filter(|(_, [left, right])| left < right)
+    {
         let cell = Rect::from_x_y_ranges(left - 4.0..=right + 4.0, header.y_range());
         let response = ui.interact(cell, ui.scope_id().with(("column", column.words)), Sense::click());
         let is_on = scope.bench.session.order == column.order;
@@ -243,7 +245,13 @@ fn table_ui(ui: &mut Ui, rows: &[SnagRow], scope: &mut Scope<'_>) {
         .and_then(|mark| rows.iter().position(|row| SnagMark::of(&scope.bench.snags()[row.index]) == mark));
     ui.spacing_mut().item_spacing.y = 0.0;
     let scrolls = scope.pictures.scroll_to_snag;
-    ScrollArea::vertical().id_salt("snag rows").auto_shrink(false).show_viewport(ui, |ui, viewport| {
+    let clip = scope.bench.source().cloned();
+    let labels = clip.iter().flat_map(|clip| clip.skeleton.listed().map(|joint| clip.skeleton.label(joint)));
+    let shared = Shared::of(labels);
+    // Where hints take most of the room few rows are seen, and none over what is below.
+    let area_of_rows =
+        ScrollArea::vertical().id_salt("snag rows").auto_shrink(false).min_scrolled_height(0.0);
+    area_of_rows.show_viewport(ui, |ui, viewport| {
         let top = ui.max_rect().top();
         ui.set_height(ROW_HEIGHT * rows.len() as f32);
         if scrolls && let Some(place) = chosen_place {
@@ -255,7 +263,7 @@ fn table_ui(ui: &mut Ui, rows: &[SnagRow], scope: &mut Scope<'_>) {
         for (place, row) in rows.iter().enumerate().take(last).skip(first) {
             let y = top + place as f32 * ROW_HEIGHT;
             let bounds = Rect::from_min_size(pos2(area.left(), y), vec2(area.width(), ROW_HEIGHT));
-            row_ui(ui, bounds, &edges, row, chosen_place == Some(place), &look, scope.out);
+            row_ui(ui, bounds, &edges, row, shared, chosen_place == Some(place), scope.out);
         }
     });
 }
@@ -265,10 +273,11 @@ fn row_ui(
     bounds: Rect,
     edges: &Edges,
     row: &SnagRow,
+    shared: Shared<'_>,
     is_chosen: bool,
-    look: &Look,
     out: &mut Vec<Command>,
 ) {
+    let look = &Look::of(ui);
     let response = ui.interact(bounds, ui.scope_id().with(("snag", row.index)), Sense::click());
     response.widget_info(|| {
         let words = format!("Snag {}, {}, frame {}, {}", row.kind, row.joint, row.frames, row.state.word());
@@ -286,24 +295,35 @@ fn row_ui(
     let ink = if row.state == SnagState::Open { look.text } else { look.faint };
     let kind = row.kind.to_string();
     let cells = [&kind, &row.joint, &row.frames, &row.size, &row.confidence];
-    for (place, (words, [left, right])) in cells.into_iter().zip(*columns).enumerate() {
+    let cells = cells.into_iter().zip(*columns).enumerate();
+    for (place, (words, [left, right])) in cells.filter(|(_, (_, [left, right]))| left < right) {
         let left = if place == 0 { left + 20.0 } else { left };
-        cell_ui(painter, words, [left, right], y, ink, place >= 2);
+        if place == 1 {
+            let bounds = Rect::from_x_y_ranges(left..=right.max(left + 8.0), bounds.y_range());
+            name_ui(painter, bounds, words, shared, &FontId::proportional(13.0), ink);
+        } else {
+            cell_ui(painter, words, [left, right], y, ink, place >= 2);
+        }
     }
     let [left, right] = columns[5];
     let dot = pos2(left + 4.0, y);
+    // Without this column the letter's plate tells it.
+    let has_state = left < right;
     match row.state {
-        SnagState::Open => {
+        SnagState::Open if has_state => {
             painter.circle_stroke(dot, 3.2, (1.4, look.snag));
         }
-        SnagState::Mended => {
+        SnagState::Mended if has_state => {
             painter.circle_filled(dot, 3.6, look.after);
         }
-        SnagState::Left => {
+        SnagState::Left if has_state => {
             painter.hline(dot.x - 3.5..=dot.x + 3.5, y, (1.6, look.faint));
         }
+        _ => {}
     }
-    cell_ui(painter, row.state.word(), [left + 13.0, right], y, ink, false);
+    if has_state {
+        cell_ui(painter, row.state.word(), [left + 13.0, right], y, ink, false);
+    }
     if let Some(words) = edges.words {
         cell_ui(painter, &row.text, words, y, look.faint, false);
     }

@@ -5,7 +5,7 @@ use egui::{Align2, CursorIcon, FontId, Rect, Role, Sense, Ui, WidgetInfo, pos2, 
 use super::super::commands::{Action, Command, TimeCommand};
 use super::super::jobs::Slot;
 use super::super::theme::INSET;
-use super::super::view_models::{SnagState, rate_text, seconds};
+use super::super::view_models::{SnagState, clock, rate_text, seconds};
 use super::super::widgets::{Icon, icon_button, is_quick_click};
 use super::Scope;
 use crate::scene::{Edit, MarkerChange};
@@ -35,8 +35,9 @@ pub(crate) fn transport_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
             let now = scope.bench.session.playback.playhead_secs;
             let frame = clip.grid.frame(now);
             let last = clip.grid.count().saturating_sub(1);
-            let words = format!("{}  /  {}", seconds(now), seconds(clip.duration_secs));
-            let longest = format!("{0}  /  {0}", seconds(clip.duration_secs));
+            let whole = clock(clip.duration_secs, clip.duration_secs);
+            let words = format!("{}  /  {whole}", clock(now, clip.duration_secs));
+            let longest = format!("{whole}  /  {whole}");
             number_label(ui, scope, &words, &longest);
             let (words, longest) = (format!("frame {frame} / {last}"), format!("frame {last} / {last}"));
             number_label(ui, scope, &words, &longest);

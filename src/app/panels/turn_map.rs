@@ -12,11 +12,12 @@ use super::super::commands::{Action, Command, TimeCommand};
 use super::super::pictures::{MapKey, RowsKey, on_pixels};
 use super::super::theme::{GUTTER_WIDTH, INSET, Look, RULER_HEIGHT, TIME_MARGIN, color32};
 use super::super::view_models::{
-    HeatKind, HeatMap, MapRow, SnagState, TimeChoice, counted, degrees, map_rows, rotation_at, seconds, ticks,
+    HeatKind, HeatMap, MapRow, Shared, SnagState, TimeChoice, counted, degrees, map_rows, rotation_at,
+    seconds, ticks,
 };
 use super::super::widgets::{
-    Icon, TimeAxis, focus_ring, hint, letter_plate, paint_icon, playhead, read_out, scrub_and_zoom, segment,
-    strip,
+    Icon, TimeAxis, focus_ring, hint, letter_plate, name_ui, paint_icon, playhead, read_out, scrub_and_zoom,
+    segment, spoken, strip,
 };
 use super::Scope;
 use crate::clip::Clip;
@@ -230,7 +231,9 @@ fn rows_ui(
             let first = (viewport.top() / row_height).floor().max(0.0) as usize;
             let last = ((viewport.bottom() / row_height).ceil() as usize).min(order.len());
             let visible = &order[first.min(last)..last];
-            let rows = Rows { top: top + first as f32 * row_height, height: row_height, visible, heat };
+            let deepest = order.iter().map(|row| row.depth).max().unwrap_or(0);
+            let top_row = top + first as f32 * row_height;
+            let rows = Rows { top: top_row, height: row_height, visible, deepest, heat };
             if let Some(joint) = scope.bench.session.joint
                 && scope.pictures.scroll_to_joint == Some(joint)
                 && let Some(place) =
@@ -251,6 +254,8 @@ struct Rows<'a> {
     top: f32,
     height: f32,
     visible: &'a [MapRow],
+    /// How far the deepest of all rows is moved in, those out of sight among them.
+    deepest: usize,
     heat: &'a Arc<HeatMap>,
 }
 
@@ -301,7 +306,12 @@ fn draw_rows(
 
     let over_time = Rect::from_x_y_ranges(axis.span, body.y_range()).intersect(ui.clip_rect());
     let response = ui.interact(over_time, ui.scope_id().with("turn map"), Sense::click_and_drag());
-    response.widget_info(|| WidgetInfo::labeled(Role::Canvas, true, "Turn map rows"));
+    let hovered = response.hover_pos().and_then(|pointer| hover_lines(pointer, axis, clip, rows, scope));
+    response.widget_info(|| {
+        let mut info = WidgetInfo::labeled(Role::Canvas, true, "Turn map rows");
+        info.current_text_value = hovered.as_ref().map(|(_, lines)| spoken(lines));
+        info
+    });
     let is_choosing = choosing(ui, &response, axis, Some(rows), scope);
     let pressed = !is_choosing && ui.input(|input| input.pointer.primary_pressed());
     if (response.is_pointer_button_down_on() || response.clicked())
@@ -323,8 +333,11 @@ fn draw_rows(
     if !is_choosing && !chose_mark {
         scrub_and_zoom(ui, &response, over_time, axis, clip, false, scope.out);
     }
-    if let Some(pointer) = response.hover_pos() {
-        hover_read_out(ui, pointer, axis, clip, rows, scope);
+    if let (Some(pointer), Some((joint, lines))) = (response.hover_pos(), hovered) {
+        scope.out.push(Command::HoverJoint(joint));
+        let layer =
+            ui.ctx().layer_painter(egui::LayerId::new(egui::Order::Tooltip, ui.scope_id().with("read-out")));
+        read_out(&layer, &look, pointer, ui.ctx().content_rect(), &lines);
     }
 }
 
@@ -335,6 +348,9 @@ fn labels_ui(ui: &Ui, body: Rect, axis: &TimeAxis, clip: &Clip, rows: &Rows<'_>,
     let chosen = scope.bench.session.joints();
     let choice = scope.bench.session.choice.clone();
     let labels = Rangef::new(body.left(), axis.span.min);
+    // Deep hierarchies must leave room for the names.
+    let step = (0.22 * labels.span() / rows.deepest.max(1) as f32).min(6.0);
+    let shared = Shared::of(clip.skeleton.listed().map(|joint| clip.skeleton.label(joint)));
     for (place, row) in rows.visible.iter().enumerate() {
         let joint = row.joint;
         let cell = rows.bounds(place, labels);
@@ -361,10 +377,8 @@ fn labels_ui(ui: &Ui, body: Rect, axis: &TimeAxis, clip: &Clip, rows: &Rows<'_>,
             painter.rect_filled(cell, 0.0, look.hover);
         }
         let ink = if is_chosen { look.text } else { look.faint };
-        // Deep hierarchies must leave room for the name.
-        let indent = (row.depth as f32 * 6.0).min(0.35 * cell.width());
-        let chevron =
-            Rect::from_min_size(pos2(cell.left() + 5.0 + indent, cell.top()), vec2(14.0, cell.height()));
+        let left = cell.left() + 5.0 + row.depth as f32 * step;
+        let chevron = Rect::from_min_size(pos2(left, cell.top()), vec2(14.0, cell.height()));
         if row.has_children {
             let response = ui.interact(chevron, ui.scope_id().with(("map fold", joint)), Sense::click());
             let verb = if row.is_open { "Fold" } else { "Unfold" };
@@ -379,7 +393,7 @@ fn labels_ui(ui: &Ui, body: Rect, axis: &TimeAxis, clip: &Clip, rows: &Rows<'_>,
             }
         }
         let mut words =
-            Rect::from_min_max(pos2(chevron.right() + 2.0, cell.top()), cell.max - vec2(INSET, 0.0));
+            Rect::from_min_max(pos2(chevron.right() + 2.0, cell.top()), cell.max - vec2(4.0, 0.0));
         let is_in_choice =
             choice.joints.is_some() && row.members.iter().any(|&own| choice.has_joint(rows.heat.joints[own]));
         if is_in_choice {
@@ -387,10 +401,14 @@ fn labels_ui(ui: &Ui, body: Rect, axis: &TimeAxis, clip: &Clip, rows: &Rows<'_>,
             painter.circle_filled(pos2(cell.right() - INSET - 1.0, cell.center().y), 3.0, look.selection);
             words.max.x -= 10.0;
         }
-        if row.is_open || row.members.len() < 2 {
-            elided(&painter, words, name, ink);
+        let font = FontId::proportional(12.5);
+        let shown = if row.is_open || row.members.len() < 2 {
+            name.to_owned()
         } else {
-            elided(&painter, words, &format!("{name} +{}", row.members.len() - 1), ink);
+            format!("{name} +{}", row.members.len() - 1)
+        };
+        if name_ui(&painter, words, &shown, shared, &font, ink) {
+            response.on_hover_text(shown);
         }
         if is_chosen {
             let across = rows.bounds(place, axis.span);
@@ -523,15 +541,6 @@ fn heat_image(key: &MapKey, clip: &Clip, look: &Look, [width, height]: [usize; 2
     image
 }
 
-/// Words cut with … where they are too long.
-fn elided(painter: &egui::Painter, bounds: Rect, words: &str, color: Color32) {
-    let mut job =
-        egui::text::LayoutJob::simple_singleline(words.to_owned(), FontId::proportional(12.5), color);
-    job.wrap = egui::text::TextWrapping::truncate_at_width(bounds.width());
-    let galley = painter.layout_job(job);
-    painter.galley(pos2(bounds.left(), bounds.center().y - galley.size().y / 2.0), galley, color);
-}
-
 const MARK: f32 = 13.0;
 
 /// The snags of the visible rows, those that would lie on each other as one.
@@ -642,15 +651,15 @@ fn mark_at(pointer: egui::Pos2, axis: &TimeAxis, rows: &Rows<'_>, scope: &Scope<
     marks(axis, rows, scope).iter().find(hit).map(|mark| mark.index)
 }
 
-fn hover_read_out(
-    ui: &Ui,
+/// What the pointer is on: the joint, and what is told about it there.
+fn hover_lines(
     pointer: egui::Pos2,
     axis: &TimeAxis,
     clip: &Clip,
     rows: &Rows<'_>,
-    scope: &mut Scope<'_>,
-) {
-    let Some(place) = rows.at(pointer.y) else { return };
+    scope: &Scope<'_>,
+) -> Option<(usize, Vec<(String, Color32)>)> {
+    let place = rows.at(pointer.y)?;
     let look = scope.look;
     let row = &rows.visible[place];
     let time = axis.time(pointer.x).clamp(0.0, clip.duration_secs);
@@ -658,7 +667,6 @@ fn hover_read_out(
     let at = clip.grid.time(frame);
     // Of a folded limb the hottest joint is told.
     let joint = row.hottest(rows.heat, &(frame..frame + 1));
-    scope.out.push(Command::HoverJoint(joint));
     let value = match rows.heat.kind {
         HeatKind::TurnRate => {
             let before = clip.grid.time(frame.saturating_sub(1));
@@ -691,7 +699,5 @@ fn hover_read_out(
         let words = format!("{} {}, {}", snag.kind.letter(), snag.kind, state.word());
         lines.push((words, if state == SnagState::Open { look.error } else { look.faint }));
     }
-    let layer =
-        ui.ctx().layer_painter(egui::LayerId::new(egui::Order::Tooltip, ui.scope_id().with("read-out")));
-    read_out(&layer, &look, pointer, ui.ctx().content_rect(), &lines);
+    Some((joint, lines))
 }

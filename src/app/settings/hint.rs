@@ -58,9 +58,7 @@ impl Hint {
             Self::Snags => {
                 "What was found wrong. F8 jumps to the next, Ctrl+Enter mends it, Ctrl+Delete leaves it"
             }
-            Self::Passes => {
-                "The steps from your file to the result, from top to bottom. Each can be switched off"
-            }
+            Self::Passes => "The steps from file to result, in their order. Each can be switched off",
             Self::Transport => "Space plays. The bar shows the whole clip; arrows step by a frame",
         }
     }

@@ -245,6 +245,12 @@ pub fn with_more(edits: &[KeyEdit], more: &[KeyEdit]) -> Vec<KeyEdit> {
                 }
                 true
             }
+            (Some(KeyEdit { change: KeyChange::Space(starts, known), .. }), KeyChange::Space(again, new))
+                if starts == again =>
+            {
+                *known = *new;
+                true
+            }
             _ => false,
         };
         if !joined {

@@ -94,7 +94,8 @@ pub fn limb_starts(skeleton: &Skeleton, roles: &Roles) -> BTreeSet<usize> {
     let limbs = roles.chains.iter().filter(|chain| chain.kind != ChainKind::Trunk);
     let starts: BTreeSet<usize> =
         limbs.filter_map(|chain| chain.joints.first().copied()).filter(has_children).collect();
-    if !starts.is_empty() {
+    // A root that begins a chain would fold the whole figure into one row.
+    if !starts.is_empty() && starts.iter().all(|&joint| skeleton.parent_joint(joint).is_some()) {
         return starts;
     }
     let children_of =
@@ -104,4 +105,35 @@ pub fn limb_starts(skeleton: &Skeleton, roles: &Roles) -> BTreeSet<usize> {
         .filter(|&joint| skeleton.parent_joint(joint).is_some_and(|parent| children_of(parent) > 1))
         .filter(has_children)
         .collect()
+}
+
+#[cfg(test)]
+mod tests {
+    use glam::DVec3;
+
+    use super::*;
+    use crate::skeleton::{Joint, JointKind, Transform};
+
+    #[test]
+    fn limbs_that_all_hang_on_the_root_fold_one_by_one() {
+        // Three chains of three side by side: the first of them is found as one that begins at the root.
+        let joint = |number: usize| {
+            let (limb, place) = (number.saturating_sub(1) / 3, number.saturating_sub(1) % 3);
+            let (parent, place) = match (number, place) {
+                (0, _) => (None, DVec3::new(0.0, 90.0, 0.0)),
+                (_, 0) => (Some(0), DVec3::new(4.0 * limb as f64 - 20.0, 0.0, 1.0)),
+                _ => (Some(number - 1), DVec3::new(3.0, 5.0, 1.0)),
+            };
+            Joint {
+                name: format!("part{number}"),
+                number,
+                parent,
+                rest: Transform::from_translation(place),
+                kind: JointKind::Joint,
+                tips: vec![],
+            }
+        };
+        let skeleton = Skeleton::new((0..10).map(joint).collect()).unwrap();
+        assert_eq!(limb_starts(&skeleton, &Roles::find(&skeleton)), BTreeSet::from([1, 4, 7]));
+    }
 }

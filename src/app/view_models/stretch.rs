@@ -3,8 +3,9 @@
 //! Where a key stands at each frame there is no room between two keys for a path that anybody could see. There the chosen keys from
 //! the first to the last are one stretch: those between give way, and the path leads from its first key to its last.
 
-use crate::clip::{FrameGrid, KeyChange, KeyEdit, MeantTurn, PathKind, RotationTrack};
+use crate::clip::{Clip, FrameGrid, KeyChange, KeyEdit, MeantTurn, PathKind, RotationTrack, Spacing};
 
+use super::key_choice::KeyChoice;
 use super::key_drag::key_at;
 
 /// A segment that is to be.
@@ -58,11 +59,42 @@ pub fn stretches(joint: usize, track: &RotationTrack, grid: &FrameGrid, times: &
 impl Stretch {
     /// Whether edits that were made before have taken the keys out already.
     pub fn is_known(&self, edits: &[KeyEdit]) -> bool {
-        self.gone_secs.is_empty()
-            || edits.iter().any(|edit| {
-                edit.joint == self.joint
-                    && matches!(&edit.change, KeyChange::Delete(gone) if *gone == self.gone_secs)
-            })
+        let clears = |edit: &KeyEdit| matches!(edit.change, KeyChange::Delete(_));
+        self.gone_secs.is_empty() || self.shaping(edits).any(clears)
+    }
+
+    /// Those of `edits` that shape it, in their order.
+    fn shaping<'a>(&'a self, edits: &'a [KeyEdit]) -> impl Iterator<Item = &'a KeyEdit> {
+        edits.iter().filter(|edit| edit.joint == self.joint).filter(|edit| match &edit.change {
+            KeyChange::Delete(gone) => *gone == self.gone_secs,
+            KeyChange::Path(starts, _) | KeyChange::Space(starts, _) | KeyChange::Turn(starts, _) => {
+                starts.iter().any(|secs| (secs - self.start_secs).abs() < 1e-5)
+            }
+            _ => false,
+        })
+    }
+
+    /// The time in seconds of the key it leads to.
+    pub fn end_secs(&self, track: &RotationTrack) -> f64 {
+        let before = key_at(track, self.gone_secs.last().copied().unwrap_or(self.start_secs));
+        before.map_or(self.start_secs, |key| track.times.at((key + 1).min(track.times.len() - 1)))
+    }
+
+    /// Its keys from the first to the last, as they are chosen.
+    pub fn keys(&self, track: &RotationTrack) -> KeyChoice {
+        let mut keys = KeyChoice::default();
+        let ends = [self.start_secs, self.end_secs(track)];
+        keys.add(self.joint, ends.into_iter().chain(self.gone_secs.iter().copied()));
+        keys
+    }
+
+    /// The spacing that `edits` give it.
+    pub fn spacing(&self, edits: &[KeyEdit]) -> Spacing {
+        let given = |edit: &KeyEdit| match edit.change {
+            KeyChange::Space(_, spacing) => Some(spacing),
+            _ => None,
+        };
+        self.shaping(edits).filter_map(given).last().unwrap_or_default()
     }
 
     /// The edit that takes the keys out that give way.
@@ -75,14 +107,42 @@ impl Stretch {
     pub fn path_and_turn(&self, track: &RotationTrack, edits: &[KeyEdit]) -> (PathKind, MeantTurn) {
         let segment = key_at(track, self.start_secs).unwrap_or(0);
         let own = (track.kind_of(segment, None), track.segments.of(segment).turn);
-        let starts_here = |starts: &[f64]| starts.iter().any(|secs| (secs - self.start_secs).abs() < 1e-5);
-        let mine = edits.iter().filter(|edit| edit.joint == self.joint);
-        mine.fold(own, |(kind, turn), edit| match &edit.change {
-            KeyChange::Path(starts, new) if starts_here(starts) => (*new, turn),
-            KeyChange::Turn(starts, new) if starts_here(starts) => (kind, *new),
+        self.shaping(edits).fold(own, |(kind, turn), edit| match &edit.change {
+            KeyChange::Path(_, new) => (*new, turn),
+            KeyChange::Turn(_, new) => (kind, *new),
             _ => (kind, turn),
         })
     }
+}
+
+/// The stretches of a file's rows that `edits`, those of one pass, have shaped. Their rows are all there again in `clip`, so that only the
+/// edits tell of them.
+pub fn shaped_rows(clip: &Clip, edits: &[KeyEdit]) -> Vec<Stretch> {
+    let stretch = |edit: &KeyEdit| {
+        let KeyChange::Delete(gone) = &edit.change else { return None };
+        let track = clip.rotation(edit.joint).filter(|track| !track.times.is_empty())?;
+        let [first, last] = [key_at(track, *gone.first()?)?, key_at(track, *gone.last()?)?];
+        let is_run = first > 0 && last + 1 == first + gone.len() && last + 1 < track.times.len();
+        // What was moved in the same pass is no longer where its row is.
+        let moves = |own: &KeyEdit| own.joint == edit.joint && matches!(own.change, KeyChange::Move(_));
+        let start_secs = track.times.at(first.checked_sub(1)?);
+        (is_run && !edits.iter().any(moves)).then(|| Stretch {
+            joint: edit.joint,
+            start_secs,
+            gone_secs: gone.clone(),
+        })
+    };
+    edits.iter().filter_map(stretch).collect()
+}
+
+/// `more` with what has shaped the stretches of rows it speaks of in front, for a look at what it does to `clip` by itself.
+pub fn with_shaping(clip: &Clip, edits: &[KeyEdit], more: &[KeyEdit]) -> Vec<KeyEdit> {
+    let clears = |joint: usize| {
+        more.iter().any(|edit| edit.joint == joint && matches!(edit.change, KeyChange::Delete(_)))
+    };
+    let rows = shaped_rows(clip, edits);
+    let meant = rows.iter().filter(|own| own.shaping(more).next().is_some() && !clears(own.joint));
+    meant.flat_map(|own| own.shaping(edits)).chain(more).cloned().collect()
 }
 
 #[cfg(test)]

@@ -28,6 +28,23 @@ pub fn seconds(time_secs: f64) -> String {
     format!("{time_secs:.3} s")
 }
 
+/// A time of a clip so many seconds long, as the ruler tells it: seconds, in a clip of minutes minutes and seconds, in one of hours all three.
+pub fn clock(time_secs: f64, duration_secs: f64) -> String {
+    /// From here on the ruler of a whole clip tells minutes.
+    const LONG_SECS: f64 = 300.0;
+    if duration_secs < LONG_SECS {
+        return seconds(time_secs);
+    }
+    let thousandths = (time_secs * 1000.0).round() as i64;
+    let (whole, rest) = (thousandths.div_euclid(1000), thousandths.rem_euclid(1000));
+    let (minutes, own) = (whole / 60, whole % 60);
+    if duration_secs < 3600.0 {
+        format!("{minutes}:{own:02}.{rest:03}")
+    } else {
+        format!("{}:{:02}:{own:02}.{rest:03}", minutes / 60, minutes % 60)
+    }
+}
+
 /// `1 frame`, `12 frames`.
 pub fn counted(count: usize, noun: &str) -> String {
     format!("{count} {noun}{}", if count == 1 { "" } else { "s" })
@@ -68,6 +85,14 @@ mod tests {
         }
         assert_eq!(degrees_fixed(-0.0001), "0.00°");
         assert_eq!(degrees_fixed(f64::NAN), "not a number");
+    }
+
+    #[test]
+    fn long_clips_are_told_in_minutes_and_hours() {
+        assert_eq!(clock(59.9996, 61.0), "60.000 s");
+        assert_eq!(clock(59.9996, 600.0), "1:00.000");
+        assert_eq!(clock(0.0, 600.0), "0:00.000");
+        assert_eq!(clock(3725.5, 7200.0), "1:02:05.500");
     }
 
     #[test]

@@ -5,6 +5,11 @@ use egui::{Align2, Color32, FontId, Painter, Pos2, Rect, Stroke, StrokeKind, vec
 use super::super::theme::Look;
 use super::super::view_models::SnagState;
 
+/// The words of a read-out in one line, as the value of what the pointer is over.
+pub(crate) fn spoken(lines: &[(String, Color32)]) -> String {
+    lines.iter().map(|(words, _)| words.as_str()).collect::<Vec<_>>().join(", ")
+}
+
 /// Lines of words on a plate beside a point, kept inside `bounds`.
 pub(crate) fn read_out(
     painter: &Painter,

@@ -70,7 +70,7 @@ pub(super) const ENTRIES: &[Entry] = &[
     entry(
         A::Curve(C::ChooseSegment),
         "Choose segment here",
-        "Choose the segment between two keys that the playhead is in",
+        "Choose the segment between two keys that the playhead is in, or in captured motion the stretch that was shaped there",
         Some(alt_shift(Key::Insert)),
         JOINT,
     ),

@@ -264,14 +264,17 @@ pub(super) fn number(value: f64, unit: &str) -> String {
     }
 }
 
+/// The frame under the pointer.
+fn frame_at(pointer: Pos2, chart: &Chart<'_>) -> usize {
+    let time = chart.axis.time(pointer.x).clamp(0.0, chart.clip.duration_secs);
+    chart.clip.grid.frame(time)
+}
+
 /// All numbers at the frame under the pointer.
-pub(super) fn hover_ui(ui: &Ui, look: &Look, pointer: Pos2, chart: &Chart<'_>) {
+pub(super) fn hover_lines(look: &Look, pointer: Pos2, chart: &Chart<'_>) -> Vec<(String, Color32)> {
     let clip = chart.clip;
-    let time = chart.axis.time(pointer.x).clamp(0.0, clip.duration_secs);
-    let frame = clip.grid.frame(time);
+    let frame = frame_at(pointer, chart);
     let at = clip.grid.time(frame);
-    let painter = ui.painter_at(chart.plot.expand(4.0));
-    painter.vline(chart.axis.x(at), chart.plot.y_range(), (1.0, look.axis));
     let mut lines = vec![(format!("{}  frame {frame}", seconds(at)), look.faint)];
     for set in chart.sets {
         if chart.sets.len() > 1 {
@@ -288,9 +291,16 @@ pub(super) fn hover_ui(ui: &Ui, look: &Look, pointer: Pos2, chart: &Chart<'_>) {
             lines.push((words, legible(look, line.color)));
         }
     }
+    lines
+}
+
+/// Shows them beside the pointer, and the frame as a line.
+pub(super) fn hover_ui(ui: &Ui, look: &Look, pointer: Pos2, chart: &Chart<'_>, lines: &[(String, Color32)]) {
+    let x = chart.axis.x(chart.clip.grid.time(frame_at(pointer, chart)));
+    ui.painter_at(chart.plot.expand(4.0)).vline(x, chart.plot.y_range(), (1.0, look.axis));
     let layer =
         ui.ctx().layer_painter(egui::LayerId::new(egui::Order::Tooltip, ui.scope_id().with("read-out")));
-    read_out(&layer, look, pointer + vec2(0.0, 6.0), ui.ctx().content_rect(), &lines);
+    read_out(&layer, look, pointer + vec2(0.0, 6.0), ui.ctx().content_rect(), lines);
 }
 
 fn before_at(set: &CurveSet, line: &CurveLine, secs: f64) -> Option<f64> {

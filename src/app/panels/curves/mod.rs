@@ -15,7 +15,7 @@ use egui::{Rangef, Rect, Role, Sense, Ui, WidgetInfo, pos2, vec2};
 use super::super::commands::Action;
 use super::super::theme::{GUTTER_WIDTH, TIME_MARGIN};
 use super::super::view_models::{CurveView, fitted_values};
-use super::super::widgets::{TimeAxis, hint, playhead, segment, strip, vertical_grid};
+use super::super::widgets::{TimeAxis, hint, playhead, segment, spoken, strip, vertical_grid};
 use super::Scope;
 use axis::ValueAxis;
 use chart::Chart;
@@ -82,7 +82,6 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let plot = Rect::from_x_y_ranges(axis.span, Rangef::new(area.top() + 8.0, lane_top - 5.0));
     let lane = Rect::from_x_y_ranges(axis.span, Rangef::new(lane_top, area.bottom()));
     let response = ui.allocate_rect(area, Sense::click_and_drag());
-    response.widget_info(|| WidgetInfo::labeled(Role::Canvas, true, "Rotation curves chart"));
     let held = scope.pictures.curve_press.and_then(|press| press.held_values());
     let bounds = held.or(session.curves.values).or_else(|| fitted_values(&sets, session.window));
     let chart = Chart {
@@ -97,9 +96,16 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         sets: &sets,
         is_source_alone: session.shows_source_alone(),
     };
+    let look = scope.look;
+    let pointer = response.hover_pos().filter(|pointer| plot.expand(4.0).contains(*pointer));
+    let told = pointer.map(|pointer| (pointer, marks::hover_lines(&look, pointer, &chart)));
+    response.widget_info(|| {
+        let mut info = WidgetInfo::labeled(Role::Canvas, true, "Rotation curves chart");
+        info.current_text_value = told.as_ref().map(|(_, lines)| spoken(lines));
+        info
+    });
     let hover = hand::hand_ui(ui, &response, &chart, scope);
 
-    let look = scope.look;
     let painter = ui.painter_at(area);
     chart.values.grid_ui(&painter, &look, &axis, sets[0].unit);
     vertical_grid(&painter, &axis, &clip, plot.y_range(), look.grid);
@@ -121,8 +127,8 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     playhead(&painter, &look, &axis, now, area.y_range());
     marks::legend_ui(&painter, &look, &chart, now, session.curves.line);
     hand::gesture_ui(ui, &chart, scope, &hover);
-    if let Some(pointer) = response.hover_pos().filter(|pointer| plot.expand(4.0).contains(*pointer)) {
-        marks::hover_ui(ui, &look, pointer, &chart);
+    if let Some((pointer, lines)) = &told {
+        marks::hover_ui(ui, &look, *pointer, &chart, lines);
     }
     spacing::spacing_ui(ui, &chart, scope);
     if has_bar {

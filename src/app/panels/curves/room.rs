@@ -1,6 +1,6 @@
 //! How far the curve with the dot may go, in views where limits have no level of their own.
 
-use egui::{Align2, FontId, Painter, Rangef, Rect, Stroke, pos2};
+use egui::{FontId, Painter, Pos2, Rangef, Rect, Shape, Stroke, pos2};
 
 use super::super::super::view_models::{RoomKey, limit_room};
 use super::super::Scope;
@@ -56,14 +56,16 @@ pub(super) fn room_ui(painter: &Painter, chart: &Chart<'_>, scope: &mut Scope<'_
                 mesh.add_colored_rect(cell, fill);
             }
         }
-        for end in [0, 1] {
-            let is_on_chart = |y: f32| y > rows.min + 0.5 && y < rows.max - 0.5;
-            if is_on_chart(from[end]) && is_on_chart(to[end]) {
-                painter.line_segment([pos2(left, from[end]), pos2(right, to[end])], stroke);
-            }
-        }
     }
     painter.add(mesh);
+    // An edge is one line for as long as it is on the chart: a shape for each column would take longer to draw than the curves.
+    let is_on_chart = |y: f32| y > rows.min + 0.5 && y < rows.max - 0.5;
+    for end in [0, 1] {
+        let points: Vec<Pos2> = (0..columns).map(|column| pos2(x(column), heights(column)[end])).collect();
+        for run in points.split(|point| !is_on_chart(point.y)).filter(|run| run.len() > 1) {
+            painter.add(Shape::line(run.to_vec(), stroke));
+        }
+    }
     let others: Vec<&str> = set
         .lines
         .iter()
@@ -72,11 +74,16 @@ pub(super) fn room_ui(painter: &Painter, chart: &Chart<'_>, scope: &mut Scope<'_
         .map(|(_, own)| own.name.as_str())
         .collect();
     let words = format!("limit of {} while {} stay", own.name, others.join(" and "));
-    let [low, high] = heights(0);
-    let font = FontId::proportional(11.0);
-    if high > rows.min + 14.0 {
-        painter.text(pos2(plot.left() + 6.0, high), Align2::LEFT_BOTTOM, words, font, look.faint);
-    } else if low < rows.max - 14.0 {
-        painter.text(pos2(plot.left() + 6.0, low), Align2::LEFT_TOP, words, font, look.faint);
+    let galley = painter.layout_no_wrap(words, FontId::proportional(11.0), look.faint);
+    // Clear of the edge for as long as the words are.
+    let beside = ((galley.size().x / APART).ceil() as usize + 3).min(columns);
+    let [low, high] = (0..beside)
+        .map(heights)
+        .fold([rows.min, rows.max], |[low, high], own| [low.max(own[0]), high.min(own[1])]);
+    let left = plot.left() + 6.0;
+    if high > rows.min + galley.size().y {
+        painter.galley(pos2(left, high - galley.size().y), galley, look.faint);
+    } else if low < rows.max - galley.size().y {
+        painter.galley(pos2(left, low), galley, look.faint);
     }
 }

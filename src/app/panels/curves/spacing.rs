@@ -1,10 +1,11 @@
-//! The spacing of the chosen segment as a small curve with two handles: time across, way up.
+//! The spacing of the chosen segment, or of the chosen stretch of rows once it was shaped, as a small curve with two handles: time across,
+//! way up.
 
 use egui::{Align2, FontId, Key, Rect, Role, Sense, Shape, Stroke, StrokeKind, Ui, WidgetInfo, pos2, vec2};
 
 use super::super::super::commands::{Command, CurveCommand};
 use super::super::super::view_models::KeyDrag;
-use super::super::super::view_models::{Stroke as HandStroke, key_at};
+use super::super::super::view_models::{Stretch, Stroke as HandStroke, key_at, shaped_rows};
 use super::super::Scope;
 use super::chart::Chart;
 use crate::clip::{KeyChange, Spacing};
@@ -14,16 +15,15 @@ const STEP: f64 = 0.02;
 
 /// The inset, while a segment is chosen.
 pub(super) fn spacing_ui(ui: &Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
-    let Some((joint, start_secs)) = scope.bench.session.curves.segment else { return };
-    let Some(track) = chart.track(joint) else { return };
-    let Some(segment) = key_at(track, start_secs).filter(|key| key + 1 < track.keys.len()) else { return };
+    let Some(meant) = meant(chart, scope) else { return };
+    let Meant { joint, span_secs: [start_secs, end_secs], spacing } = meant;
     let size = vec2(128.0, 92.0);
     if chart.plot.height() < size.y + 6.0 || chart.plot.width() < 2.0 * size.x {
         return;
     }
     let look = scope.look;
     // On the side of the chart where the segment is not.
-    let middle = chart.axis.x(track.times.at(segment).midpoint(track.times.at(segment + 1)));
+    let middle = chart.axis.x(start_secs.midpoint(end_secs));
     let left = if middle < chart.plot.center().x {
         chart.plot.right() - size.x - 92.0
     } else {
@@ -33,7 +33,7 @@ pub(super) fn spacing_ui(ui: &Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
     // Presses beside the handles stay here: they must not scrub.
     ui.interact(bounds, ui.scope_id().with("spacing"), Sense::click_and_drag())
         .widget_info(|| WidgetInfo::labeled(Role::Group, true, "Spacing of the chosen segment"));
-    let own = shown_spacing(scope).unwrap_or_else(|| track.segments.of(segment).spacing);
+    let own = shown_spacing(scope).unwrap_or(spacing);
     let painter = ui.painter_at(bounds);
     painter.rect(bounds, 4.0, look.panel, Stroke::new(1.0, look.line), StrokeKind::Inside);
     let inner = Rect::from_min_max(bounds.min + vec2(9.0, 9.0), bounds.max - vec2(9.0, 17.0));
@@ -99,6 +99,31 @@ pub(super) fn spacing_ui(ui: &Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {
             }
         }
     }
+}
+
+/// What the handles are of.
+struct Meant {
+    joint: usize,
+    span_secs: [f64; 2],
+    spacing: Spacing,
+}
+
+fn meant(chart: &Chart<'_>, scope: &Scope<'_>) -> Option<Meant> {
+    let curves = &scope.bench.session.curves;
+    if let Some((joint, start_secs)) = curves.segment {
+        let track = chart.track(joint)?;
+        let segment = key_at(track, start_secs).filter(|key| key + 1 < track.keys.len())?;
+        let span_secs = [start_secs, track.times.at(segment + 1)];
+        return Some(Meant { joint, span_secs, spacing: track.segments.of(segment).spacing });
+    }
+    let edits = scope.bench.last_key_edits();
+    let rows = if curves.keys.is_empty() { Vec::new() } else { shaped_rows(chart.clip, edits) };
+    let chosen = |own: &Stretch| {
+        let track = chart.track(own.joint).filter(|track| own.keys(track) == curves.keys)?;
+        let span_secs = [own.start_secs, own.end_secs(track)];
+        Some(Meant { joint: own.joint, span_secs, spacing: own.spacing(edits) })
+    };
+    rows.iter().find_map(chosen)
 }
 
 /// The spacing that is being given by hand.
