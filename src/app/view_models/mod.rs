@@ -71,4 +71,4 @@ pub use stretch::{Stretch, is_frame_apart, stretches};
 pub use time_choice::TimeChoice;
 pub use time_window::{Tick, TimeWindow, ticks};
 pub use trail::Trail;
-pub use words::{counted, degrees, degrees_fixed, frames_text, rate_text, seconds};
+pub use words::{counted, cut_in_middle, degrees, degrees_fixed, frames_text, rate_text, seconds};

@@ -49,9 +49,41 @@ pub fn rate_text(grid: &FrameGrid) -> String {
     }
 }
 
+/// A name that has to fit into `room`, cut in its middle: names of one figure often begin alike and tell themselves apart by their ends, and by
+/// the side that some begin with. `width_of` measures words. Where not even the cut has room the cut alone is left.
+pub fn cut_in_middle(name: &str, room: f32, width_of: impl Fn(&str) -> f32) -> String {
+    /// The end gets this share of the letters.
+    const END: f64 = 0.65;
+    if width_of(name) <= room {
+        return name.to_owned();
+    }
+    let letters: Vec<char> = name.chars().collect();
+    let cut = |kept: usize| -> String {
+        let end = (kept as f64 * END).ceil() as usize;
+        let start = &letters[..kept - end];
+        start.iter().chain(&['…']).chain(&letters[letters.len() - end..]).collect()
+    };
+    // The most letters that fit; more letters are never narrower.
+    let most = (0..letters.len()).collect::<Vec<_>>().partition_point(|&kept| width_of(&cut(kept)) <= room);
+    cut(most.saturating_sub(1))
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn names_without_room_keep_their_ends() {
+        let width = |words: &str| words.chars().count() as f32;
+        let cut = |name: &str, room: f32| cut_in_middle(name, room, width);
+        assert_eq!(cut("LeftFoot", 8.0), "LeftFoot");
+        assert_eq!(cut("figure_01_body_LeftFoot", 14.0), "figu…_LeftFoot");
+        assert_eq!(cut("figure_01_body_LeftToe", 14.0), "figu…y_LeftToe");
+        assert_eq!(cut("LeftFoot", 1.0), "…");
+        assert_eq!(cut("LeftFoot", 0.0), "…");
+        assert_eq!(cut("足首左足首左", 4.0), "足…首左");
+        assert_eq!(cut("", 4.0), "");
+    }
 
     #[test]
     fn degrees_keep_useful_decimals() {
