@@ -28,6 +28,12 @@ const LEAST_SHIFT: f64 = 1e-7;
 /// With the ball down, the foot rises about it before its limb has used this share of what is left to full stretch.
 const RISE_FROM: f64 = 0.25;
 
+/// Three times as long as a foot takes to come to rise about its ball, or no longer to, at the ends of a time with the ball down; in seconds.
+const RISE_SECS: f64 = 0.15;
+
+/// Over so long the rate fades that a correction has where it is known no further, in seconds.
+const RATE_SECS: f64 = 0.15;
+
 /// How feet are held.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct PlantOptions {
@@ -37,11 +43,16 @@ pub struct PlantOptions {
     pub fade_secs: f64,
     /// From which share of its length on a limb gives way softly.
     pub ease_from: f64,
+    /// A foot comes to its place and leaves it without a corner: at the rate that it has beside it, in place of stopping at once.
+    pub keeps_rates: bool,
+    /// The axes of the lower joints' own frames about which the limbs of the first two feet bend: see [`Reach::hinge`]. `None` where the clip is to tell
+    /// by how they do bend, which one that keeps its knees straight can't.
+    pub hinges: [Option<DVec3>; 2],
 }
 
 impl Default for PlantOptions {
     fn default() -> Self {
-        Self { up: DVec3::Y, fade_secs: 0.15, ease_from: EASE_FROM }
+        Self { up: DVec3::Y, fade_secs: 0.15, ease_from: EASE_FROM, keeps_rates: false, hinges: [None; 2] }
     }
 }
 
@@ -268,10 +279,12 @@ impl Corrections {
         let trail = EndTrail::of(clip, foot);
         let step_secs = clip.grid.times.median_step().unwrap_or(1.0);
         let reach = ((options.fade_secs / step_secs).round() as usize).max(3);
+        let rate_reach = ((RATE_SECS / step_secs).round() as usize).max(3);
         let mut down = [vec![false; count], vec![false; count]];
         for (span, _) in spans {
             down[usize::from(span.part == FootPart::Ball)][span.frames()].fill(true);
         }
+        let rise_reach = ((RISE_SECS / step_secs).round() as usize).max(3) / 3;
         let [heel_down, ball_down] = &down;
         let places = [trail.part(FootPart::Heel), trail.part(FootPart::Ball)];
         let plants = runs(count, |frame| heel_down[frame] || ball_down[frame]);
@@ -294,7 +307,11 @@ impl Corrections {
         for &frame in still.iter().filter(is_free) {
             known_turns[frame] = Some(Bivector::ZERO);
         }
-        let turns = faded(&known_turns, reach);
+        let turns = if options.keeps_rates {
+            faded_at_rates(&known_turns, reach, rate_reach)
+        } else {
+            faded(&known_turns, reach)
+        };
 
         // Then the places: of the points that are down, as the foot is turned now.
         let mut known_shifts: Vec<Option<DVec3>> = vec![None; count];
@@ -346,8 +363,13 @@ impl Corrections {
         for &frame in still.iter().filter(is_free) {
             known_shifts[frame] = Some(DVec3::ZERO);
         }
-        let may_rise = smoothed(ball_down, reach / 3);
-        Self { shifts: faded(&known_shifts, reach), turns, ball: trail.ball, may_rise }
+        let may_rise = smoothed(ball_down, rise_reach);
+        let shifts = if options.keeps_rates {
+            faded_at_rates(&known_shifts, reach, rate_reach)
+        } else {
+            faded(&known_shifts, reach)
+        };
+        Self { shifts, turns, ball: trail.ball, may_rise }
     }
 }
 
@@ -420,6 +442,39 @@ where
     all
 }
 
+/// As [`faded`], without a corner where the known ends: the rate that it has there fades too, over `rate_reach` frames at most.
+fn faded_at_rates<T>(known: &[Option<T>], reach: usize, rate_reach: usize) -> Vec<T>
+where
+    T: Copy + Default + std::ops::Add<Output = T> + std::ops::Mul<f64, Output = T>,
+{
+    // The cubic that begins at 0 with rate 1 and ends at 0 with rate 0, in frames.
+    let bulge = |frames: usize, reach: usize| {
+        let t = (frames as f64 / reach as f64).min(1.0);
+        reach as f64 * t * (1.0 - t) * (1.0 - t)
+    };
+    // The change from one frame to the next away from the gap, over two frames where they are known.
+    let rate = |at: Option<usize>, one: Option<usize>, two: Option<usize>| {
+        let value = |frame: Option<usize>| frame.and_then(|frame| known.get(frame).copied().flatten());
+        match (value(at), value(one), value(two)) {
+            (Some(end), _, Some(far)) => (far + end * -1.0) * 0.5,
+            (Some(end), Some(near), None) => near + end * -1.0,
+            _ => T::default(),
+        }
+    };
+    let mut all = faded(known, reach);
+    for (first, last) in runs(known.len(), |frame| known[frame].is_none()) {
+        let before = rate(first.checked_sub(1), first.checked_sub(2), first.checked_sub(3));
+        let after = rate(Some(last + 1), Some(last + 2), Some(last + 3));
+        let within = rate_reach.min(last + 2 - first);
+        for (frame, value) in all.iter_mut().enumerate().take(last + 1).skip(first) {
+            let (from_before, to_after) = (frame + 1 - first, last + 1 - frame);
+            // Rates are seen from the known outwards; into the gap they go on the other way.
+            *value = *value + before * -bulge(from_before, within) + after * -bulge(to_after, within);
+        }
+    }
+    all
+}
+
 /// The clip with the limb of a foot bent so that its end moves as asked.
 fn bent(
     clip: &Clip,
@@ -435,11 +490,12 @@ fn bent(
     let (clip, limb) = (&branch.clip, &own_foot.limb);
     let times: Vec<f64> = clip.grid.times.iter().collect();
     let leg = crate::clip::leg_lengths(clip, std::slice::from_ref(&own_foot))[0];
-    let hinge = {
+    let known = options.hinges.get(index).copied().flatten();
+    let hinge = known.unwrap_or_else(|| {
         let every = times.len().div_ceil(HINGE_POSES).max(1);
         let poses = times.iter().step_by(every).map(|&secs| clip.local_at(secs));
         poses.map(|local| limb.hinge(&clip.skeleton, &local)).filter(|axis| axis.is_finite()).sum::<DVec3>()
-    };
+    });
     let frames: Vec<usize> = (0..times.len())
         .filter(|&frame| {
             asked.shifts[frame].length() > LEAST_SHIFT * leg || asked.turns[frame].length() > LEAST_RAD

@@ -114,6 +114,7 @@ fn goal(clip: &Clip, arm: &Arm, places: Vec<Option<DVec3>>, spans: Vec<(usize, u
         spans,
         size: length(clip, arm),
         is_foot: false,
+        hinge: None,
         what: "limits pull the hand off the place where it is held",
     }
 }

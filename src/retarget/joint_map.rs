@@ -1,11 +1,14 @@
 //! Which joint of the source drives which joint of the target.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 use crate::skeleton::roles::{Body, ChainKind, LEAST_CONFIDENCE, Role, Side};
 
 use super::figure::Figure;
 use super::map_file::MapRow;
+
+/// How sure a link is that is made by where chains hang alone: to be looked at.
+const BY_HANGING: f64 = 0.45;
 
 /// What a link was made by.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -72,6 +75,7 @@ impl JointMap {
         }
         // Front legs, tails, wings, further legs: chains of one kind and side, in their order.
         for (from, to) in chain_pairs(source, target) {
+            let is_strand = target.roles.chains[to].kind == ChainKind::Other;
             let [a, b] = [&source.roles.chains[from].joints, &target.roles.chains[to].joints];
             // Chains of unequal length are spread, but for their first joint.
             if a.len() != b.len() {
@@ -82,11 +86,13 @@ impl JointMap {
                     continue;
                 }
                 used[from] = true;
-                let reason = "the same place in chains of the same kind".to_owned();
-                found.insert(
-                    to,
-                    Link { source: from, target: to, confidence: 0.6, kind: LinkKind::Chain, reason },
-                );
+                let (confidence, reason) = if is_strand {
+                    (BY_HANGING, "the same place in chains that hang alike; nothing else tells them")
+                } else {
+                    (0.6, "the same place in chains of the same kind")
+                };
+                let (kind, reason) = (LinkKind::Chain, reason.to_owned());
+                found.insert(to, Link { source: from, target: to, confidence, kind, reason });
             }
         }
         // What is left and has the same name: props, helpers, hair.
@@ -151,6 +157,12 @@ impl JointMap {
             .collect();
         if !lost.is_empty() {
             self.doubts.push(format!("no joint of the target takes {}", lost.join(", ")));
+        }
+        if !strand_pairs(source, target).is_empty() {
+            self.doubts.push(
+                "neither figure is a body of a known kind; their chains were matched by where they hang alone: look whether they belong together"
+                    .to_owned(),
+            );
         }
         if self.links.is_empty() {
             self.doubts.push("no joint could be mapped; say which by hand with a map".to_owned());
@@ -228,7 +240,38 @@ pub(super) fn chain_pairs(source: &Figure, target: &Figure) -> Vec<(usize, usize
             pairs.push((from, to));
         }
     }
+    pairs.extend(strand_pairs(source, target));
     pairs
+}
+
+/// The chains of machines and other bodies of no known kind, where both have as many and they hang on one another alike. Where joints have the same
+/// names, these tell them better.
+fn strand_pairs(source: &Figure, target: &Figure) -> Vec<(usize, usize)> {
+    let strands = |figure: &Figure| -> Vec<usize> {
+        let is_strand = |chain: &usize| figure.roles.chains[*chain].kind == ChainKind::Other;
+        (0..figure.roles.chains.len()).filter(is_strand).collect()
+    };
+    let (own, its) = (strands(source), strands(target));
+    let is_unknown = [source, target].iter().all(|figure| figure.roles.body == Body::Unknown);
+    let name = |figure: &Figure, joint: usize| figure.skeleton.joints()[joint].name.clone();
+    let names: BTreeSet<String> = source.skeleton.listed().map(|joint| name(source, joint)).collect();
+    let shares_names = target.skeleton.listed().map(|joint| name(target, joint)).any(|name| {
+        // Files without names have the empty one in common.
+        !name.is_empty() && names.contains(&name)
+    });
+    if !is_unknown || own.len() != its.len() || shares_names {
+        return Vec::new();
+    }
+    let hangs_on = |figure: &Figure, strands: &[usize], chain: usize| {
+        let first = *figure.roles.chains[chain].joints.first()?;
+        let above = figure.roles.joints[figure.skeleton.parent_joint(first)?].chain?;
+        strands.iter().position(|&strand| strand == above)
+    };
+    let is_alike = own.iter().zip(&its).all(|(&a, &b)| {
+        let [one, other] = [&source.roles.chains[a], &target.roles.chains[b]];
+        one.side == other.side && hangs_on(source, &own, a) == hangs_on(target, &its, b)
+    });
+    if is_alike { own.into_iter().zip(its).collect() } else { Vec::new() }
 }
 
 /// Whether a link keeps ancestors above descendants among what is linked already.

@@ -91,6 +91,8 @@ pub(super) struct Plan {
     pub twists: Vec<TwistShare>,
     /// For joints whose own twist is shared out along their bone: how much they keep.
     pub keeps: Vec<Option<f64>>,
+    /// Joints that move as another one does, which they are a copy of: see [`crate::skeleton::roles::Roles::copies`].
+    pub copies: Vec<(usize, usize)>,
     /// What is worth telling.
     pub notes: Vec<String>,
 }
@@ -169,7 +171,9 @@ pub(super) fn plan(clip: &Clip, source: &Figure, target: &Figure, map: &JointMap
     let root = if map.same_build.is_some() { None } else { root(clip, source, target, map) };
     let moves = moves(clip, source, target, map, scale, turned, root.as_ref());
     let (twists, keeps) = twists(target, &drives);
-    Plan { turned, scale, drives, chains, root, moves, twists, keeps, notes }
+    let is_free = |joint: usize| matches!(drives[joint], Drive::Rest) && !map.at_rest.contains(&joint);
+    let copies = target.roles.copies.iter().copied().filter(|&(copy, _)| is_free(copy)).collect();
+    Plan { turned, scale, drives, chains, root, moves, twists, keeps, copies, notes }
 }
 
 /// A note where two figures differ in size by the factor between two units of length.

@@ -8,11 +8,11 @@ use crate::clip::{
     Clip, ContactOptions, Foot, FootPart, JointPoint, JointTracks, PlantedSpan, Slide, Trails, VectorTrack,
     contacts, leg_lengths, median_place, slide_of,
 };
-use crate::mend::{PlantOptions, move_end, plant_feet_at};
+use crate::mend::{PlantOptions, faded, move_end, plant_feet_at};
 use crate::skeleton::roles::{Role, Side};
 
 use super::figure::Figure;
-use super::keep::Goal;
+use super::keep::{Goal, WEIGHT_SECS, hips_by, weight};
 use super::options::{FootContact, frames_of};
 use super::plan::{Plan, Root};
 use super::report::{Missed, Report};
@@ -24,11 +24,22 @@ const STEP: f64 = 0.06;
 /// What is off by less than this share of the limb is met.
 pub(super) const LEAST_MISS: f64 = 1e-3;
 
+/// What holds a foot of another build is large: so long it takes to fade, in seconds. From one plant to the next of a walk it changes over the whole
+/// step.
+const FADE_SECS: f64 = 0.4;
+
+/// A foot that wanders this far while it is down, in leg lengths, has been set anew meanwhile.
+const WANDER: f64 = 0.15;
+
+/// Seconds around the moment at which a foot is set anew in which it counts as free, to both sides.
+const RESET_SECS: f64 = 0.1;
+
 /// Feet that were held, for measuring what became of them.
 pub(super) struct Held {
     feet: Vec<Foot>,
     spans: Vec<PlantedSpan>,
     legs: Vec<f64>,
+    hinges: [Option<DVec3>; 2],
     up: DVec3,
 }
 
@@ -38,8 +49,7 @@ pub fn find_contacts(clip: &Clip, figure: &Figure) -> Vec<FootContact> {
         Side::BOTH.iter().filter_map(|&side| Some((side, foot(figure, side)?))).collect();
     let own: Vec<Foot> = feet.iter().map(|(_, foot)| *foot).collect();
     let options = ContactOptions { up: figure.roles.shape.up, ..ContactOptions::default() };
-    contacts(clip, &own, &options)
-        .spans
+    steady_contacts(clip, &own, &options)
         .iter()
         .map(|span| FootContact {
             side: feet[span.foot].0,
@@ -47,6 +57,39 @@ pub fn find_contacts(clip: &Clip, figure: &Figure) -> Vec<FootContact> {
             span_secs: [clip.grid.time(span.first_frame), clip.grid.time(span.last_frame)],
         })
         .collect()
+}
+
+/// The spans in which feet are planted and stay at one place. One that shuffles along the ground for long, slowly as it may, has no one place: its span
+/// is parted where it moves fastest, until each part has one.
+fn steady_contacts(clip: &Clip, feet: &[Foot], options: &ContactOptions) -> Vec<PlantedSpan> {
+    let step_secs = clip.grid.times.median_step().unwrap_or(1.0);
+    let reset = ((RESET_SECS / step_secs).round() as usize).max(1);
+    let points: Vec<JointPoint> = feet.iter().flat_map(|foot| [foot.heel, foot.ball]).collect();
+    let rows = Trails::of(clip, &points).rows;
+    let legs = leg_lengths(clip, feet);
+    let level = |v: DVec3| v - options.up * v.dot(options.up);
+    let mut open = contacts(clip, feet, options).spans;
+    open.reverse();
+    let mut steady = Vec::with_capacity(open.len());
+    while let Some(span) = open.pop() {
+        let row = &rows[2 * span.foot + usize::from(span.part == FootPart::Ball)];
+        let (first, last) = (span.first_frame, span.last_frame);
+        let own = || row[first..=last].iter().map(|place| level(*place));
+        let low = own().fold(DVec3::INFINITY, DVec3::min);
+        let high = own().fold(DVec3::NEG_INFINITY, DVec3::max);
+        // Each part is to last as long as its ends are cut away, and longer.
+        let inner = first + 3 * reset..(last + 1).saturating_sub(3 * reset);
+        if (high - low).length() <= WANDER * legs[span.foot] || inner.is_empty() {
+            steady.push(span);
+            continue;
+        }
+        let speed = |frame: usize| level(row[frame + reset] - row[frame - reset]).length();
+        let Some(at) = inner.max_by(|&a, &b| speed(a).total_cmp(&speed(b))) else { continue };
+        open.push(PlantedSpan { first_frame: at + reset, ..span });
+        open.push(PlantedSpan { last_frame: at - reset, ..span });
+    }
+    steady.sort_unstable();
+    steady
 }
 
 /// Holds feet in the result where they are planted in the source, or where `said` says: at one place each, as high above the ground as
@@ -73,7 +116,7 @@ pub(super) fn hold_feet(
     let source_spans = match said {
         None => {
             let options = ContactOptions { up: shapes[0].up, ..ContactOptions::default() };
-            contacts(clip, &sources, &options).spans
+            steady_contacts(clip, &sources, &options)
         }
         Some(said) => said_spans(clip, said, &both, report),
     };
@@ -95,10 +138,25 @@ pub(super) fn hold_feet(
     }
     report.n_plants = spans.len();
     let result = match &plan.root {
-        Some(root) => within_reach(result, target, root, &targets, &spans, &heights, report),
+        Some(root) => {
+            let reaching = within_reach(result, target, root, &targets, &spans, &heights, report);
+            steadied(&reaching, root, &targets, &spans)
+        }
         None => result,
     };
-    let options = PlantOptions { up: shapes[1].up, ..PlantOptions::default() };
+    // A person's knees bend where the figure says, whether or not the clip ever bends them.
+    let mut hinges = [None; 2];
+    for (hinge, foot) in hinges.iter_mut().zip(&targets) {
+        let knee = foot.limb.lower;
+        *hinge = shapes[1].hinge(knee).map(|axis| shapes[1].rotations[knee].reverse().apply(axis));
+    }
+    let options = PlantOptions {
+        up: shapes[1].up,
+        fade_secs: FADE_SECS,
+        keeps_rates: true,
+        hinges,
+        ..PlantOptions::default()
+    };
     let (held, plants) = plant_feet_at(&result, &targets, &spans, &heights, &options);
     report.slide = Some([sum(&plants.before), sum(&plants.after)]);
     report.drift = Some([most(&plants.before), most(&plants.after)]);
@@ -113,7 +171,7 @@ pub(super) fn hold_feet(
         },
     ));
     let held = above_ground(held, target, plan, &targets, &spans, &legs, report);
-    (held, Some(Held { feet: targets, spans, legs, up: shapes[1].up }))
+    (held, Some(Held { feet: targets, spans, legs, hinges, up: shapes[1].up }))
 }
 
 /// What somebody said of feet, as spans of frames. What lies outside the clip, or speaks of a foot that is not there, is told.
@@ -177,6 +235,7 @@ impl Held {
                 spans: spans.iter().map(|span| (span.first_frame, span.last_frame)).collect(),
                 size: self.legs[index],
                 is_foot: true,
+                hinge: self.hinges[index],
                 what: "limits pull the foot off the place where it is planted",
             }
         };
@@ -395,6 +454,49 @@ fn within_reach(
     let tracks = (*moved.joints[root.target]).clone();
     moved.joints[root.target] = Arc::new(JointTracks { translation, ..tracks });
     moved
+}
+
+/// The hips without what trembles under feet that stand. Captured hips tremble by a millimetre or two; in the source the feet tremble along, but
+/// feet that are held would hand it on to the knees, which near full stretch make degrees of it.
+fn steadied(result: &Clip, root: &Root, feet: &[Foot], spans: &[PlantedSpan]) -> Clip {
+    /// What is taken for trembling at most, in leg lengths.
+    const MOST: f64 = 0.01;
+    let count = result.grid.count();
+    let step_secs = result.grid.times.median_step().unwrap_or(1.0);
+    let reach = ((WEIGHT_SECS / step_secs).round() as usize).max(2);
+    let points: Vec<JointPoint> = feet.iter().flat_map(|foot| [foot.heel, foot.ball]).collect();
+    let rows = Trails::of(result, &points).rows;
+    let legs = leg_lengths(result, feet);
+    let mut sums = vec![(DVec3::ZERO, 0.0); count];
+    let mut most = f64::INFINITY;
+    for span in spans {
+        let row = &rows[2 * span.foot + usize::from(span.part == FootPart::Ball)];
+        let middle = median_place(row, span.frames());
+        for frame in span.frames() {
+            let weight = weight(frame, (span.first_frame, span.last_frame), count, reach);
+            sums[frame].0 += (middle - row[frame]) * weight;
+            sums[frame].1 += weight;
+        }
+        most = most.min(MOST * legs[span.foot]);
+    }
+    let off: Vec<Option<DVec3>> =
+        sums.iter().map(|(sum, weight)| (*weight > 0.0).then(|| *sum / *weight)).collect();
+    let times: Vec<f64> = result.grid.times.iter().collect();
+    // What is slower than a few hertz is how the figure moves, and left to the legs.
+    let slow = [0, 1, 2].map(|axis| {
+        let known: Vec<(f64, f64)> =
+            off.iter().zip(&times).filter_map(|(off, secs)| Some((*secs, (*off)?[axis]))).collect();
+        SmoothCurve::through(&known, result.duration_secs)
+    });
+    let tremble: Vec<Option<DVec3>> = off
+        .iter()
+        .zip(&times)
+        .map(|(off, &secs)| {
+            let fast = (*off)? - DVec3::from_array([0, 1, 2].map(|axis| slow[axis].at(secs)));
+            Some(fast.clamp_length_max(most))
+        })
+        .collect();
+    hips_by(result, root, faded(&tremble, reach))
 }
 
 /// A leg with its foot.

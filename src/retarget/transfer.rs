@@ -75,7 +75,10 @@ pub fn retarget(
         notes: plan.notes.clone(),
         ..Report::default()
     };
-    let is_driven = |joint: &usize| !matches!(plan.drives[*joint], Drive::Rest);
+    let is_driven = |joint: &usize| {
+        let of = plan.copies.iter().find(|(copy, _)| copy == joint).map_or(*joint, |(_, of)| *of);
+        !matches!(plan.drives[of], Drive::Rest)
+    };
     report.driven = [target.skeleton.listed().filter(is_driven).count(), target.skeleton.listed().count()];
     let times = times(clip, map);
     let tracks = run(clip, target, map, &plan, &times);
@@ -117,6 +120,9 @@ pub fn retarget(
     {
         keep::note_use(&found.limits, &result, &result, &mut report);
     }
+    for &(copy, of) in &plan.copies {
+        result.joints[copy] = Arc::clone(&result.joints[of]);
+    }
     if options.measure {
         measure::measure(clip, source, target, map, &plan, &result, &mut report);
         if !is_changed {
@@ -145,6 +151,8 @@ pub enum Driver {
     Chain(Vec<usize>),
     /// The twist of the limb it lies on, of which it has a share; the joint whose bone that is.
     Twist(usize),
+    /// Another joint of the target, which it is a copy of.
+    Copy(usize),
 }
 
 impl Transfer {
@@ -173,10 +181,12 @@ impl Transfer {
             Drive::Spread { chain, .. } => {
                 Driver::Chain(self.plan.chains[*chain].sources.iter().map(|(joint, _)| *joint).collect())
             }
-            Drive::Rest => match self.plan.twists.iter().find(|own| own.helper == joint) {
-                Some(share) => Driver::Twist(share.of),
-                None => Driver::Rest,
-            },
+            Drive::Rest => {
+                let twist = self.plan.twists.iter().find(|own| own.helper == joint);
+                let copy = self.plan.copies.iter().find(|(copy, _)| *copy == joint);
+                let twist = twist.map(|share| Driver::Twist(share.of));
+                twist.or_else(|| copy.map(|&(_, of)| Driver::Copy(of))).unwrap_or(Driver::Rest)
+            }
         }
     }
 
@@ -214,6 +224,9 @@ impl Transfer {
             let moved = track.and_then(|track| track.at(secs)).unwrap_or(rest) - rest;
             let to = self.target.rest[own.target].translation;
             local[own.target].translation = to + own.turn.apply(moved) * own.factor;
+        }
+        for &(copy, of) in &self.plan.copies {
+            local[copy] = local[of];
         }
         local
     }

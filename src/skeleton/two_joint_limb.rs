@@ -9,9 +9,15 @@ use super::{Skeleton, Transform, smooth_step};
 /// From this share of its full length on a limb gives way softly, unless it is stretched further already.
 pub const EASE_FROM: f64 = 0.97;
 
-/// A limb less bent than this sine of the bend (8°) has a bending plane of noise: what it is bent by in addition turns more
-/// and more about the given hinge.
-const SURE_BEND: f64 = 0.139;
+/// A limb less bent than this sine of the bend (20°) has a bending plane of noise, or of how its knees are bowed: what it is bent by in
+/// addition turns more and more about the given hinge.
+const SURE_BEND: f64 = 0.342;
+
+/// From this angle on (150°) two sides of a limb lie half round from each other.
+const HALF_ROUND: f64 = 2.618;
+
+/// A limb less bent at rest than this sine of the bend (2°) is straight there.
+const STRAIGHT: f64 = 0.035;
 
 /// A knee nearer to the line from root to end than this share of the limb's length has no bending plane at all.
 const NO_PLANE: f64 = 1e-7;
@@ -203,7 +209,7 @@ impl TwoJointLimb {
             own.scale = now.scale;
         }
         let hinge = self.hinge(skeleton, &rest);
-        (hinge.length() > SURE_BEND * 0.25).then(|| hinge.normalize())
+        (hinge.length() > STRAIGHT).then(|| hinge.normalize())
     }
 
     /// The axis of the lower joint's own frame about which the limb is bent, as long as the sine of the bend: a turn about it
@@ -327,11 +333,15 @@ fn bending_side(
     let by_hinge = hinge.and_then(|axis| across(to.cross(arc.apply(axis))));
     match (own, by_hinge) {
         (Some(own), Some(by_hinge)) if is_trusted && bend < SURE_BEND && aside > own_aside => {
-            let sure = smooth_step(bend / SURE_BEND);
-            let more = aside - own_aside;
-            (own * (own_aside + sure * more) + by_hinge * ((1.0 - sure) * more))
-                .try_normalize()
-                .unwrap_or(by_hinge)
+            // An overstretched limb bends back through straight, and not on the wrong way.
+            let agreeing = 0.5 + 0.5 * own.dot(by_hinge);
+            let sure = smooth_step(bend / SURE_BEND) * smooth_step(agreeing);
+            let share = smooth_step(((aside - own_aside) / (2.0 * own_aside)).min(1.0));
+            // It swings round the line from root to end, always the same way where that is half round: nothing jumps in between.
+            let angle = to.dot(own.cross(by_hinge)).atan2(own.dot(by_hinge));
+            let angle = if angle < -HALF_ROUND { angle + std::f64::consts::TAU } else { angle };
+            let swing = Bivector::from_axis(to * (angle * (1.0 - sure) * share));
+            Rotor::from_plane_angles(swing).apply(own)
         }
         (Some(own), _) => own,
         (None, Some(by_hinge)) => by_hinge,

@@ -193,3 +193,52 @@ fn an_animal_gets_questions_and_no_arms() {
     assert!(sheet.window().bench().session.carry.questions_only);
     assert!(sheet.0.get_all_by_label_contains("to be looked at").next().is_some());
 }
+
+#[test]
+fn both_figures_follow_the_playhead_side_by_side_and_overlaid() {
+    let Some((walk, figure)) = files() else { return };
+    let mut sheet = open_clip(&walk, [1280.0, 720.0]);
+    sheet.ask(Command::Carry(CarryCommand::OpenOnto(figure)));
+    for (is_overlaid, pictures) in
+        [(false, vec!["Source figure", "Target figure"]), (true, vec!["Both figures"])]
+    {
+        sheet.ask(Command::Carry(CarryCommand::Overlay(is_overlaid)));
+        let places: Vec<egui::Rect> =
+            pictures.iter().map(|label| sheet.0.get_by_label(label).rect()).collect();
+        for shows_rest in [false, true] {
+            sheet.ask(Command::Carry(CarryCommand::ShowRest(shows_rest)));
+            let mut at = |secs: f64| {
+                sheet.ask(Command::Scrub(secs));
+                sheet.0.render().expect("a picture")
+            };
+            let (one, other) = (at(0.5), at(1.5));
+            for (label, place) in pictures.iter().zip(&places) {
+                let is_in = |x: u32, y: u32| place.contains(egui::pos2(x as f32 + 0.5, y as f32 + 0.5));
+                let changed = one
+                    .enumerate_pixels()
+                    .zip(other.pixels())
+                    .filter(|((x, y, before), after)| is_in(*x, *y) && before != after)
+                    .count();
+                // Legs and arms of a walk half a step on; rest poses stand.
+                let moves = changed > 300;
+                assert_eq!(moves, !shows_rest, "{label}: {changed} pixels, rest poses {shows_rest}");
+            }
+        }
+    }
+    // A joint of the target is clicked in the one picture of both too.
+    sheet.ask(Command::Carry(CarryCommand::ShowRest(true)));
+    let place = sheet.0.get_by_label("Both figures").rect();
+    assert!(sheet.window().bench().session.carry.row.is_none());
+    for step in 0..40 {
+        let at = place.center_top() + egui::vec2(0.0, place.height() * step as f32 / 40.0);
+        sheet.0.hover_at(at);
+        sheet.0.step();
+        sheet.0.drag_at(at);
+        sheet.0.drop_at(at);
+        sheet.run();
+        if sheet.window().bench().session.carry.row.is_some() {
+            return;
+        }
+    }
+    panic!("no joint of the target was hit on the way down its middle");
+}

@@ -8,6 +8,7 @@
 //! | `blend_feet` | feet in blends: what slides after against what slides in the two clips, on pairs that stand |
 //! | `blend_pairs` | blends of clips that differ in rate, unit, rest pose or body; whose way is taken; means; seams of loops |
 //! | `bvh` | the outside BVH files: poses by another program, writing back, new files |
+//! | `carry_targets` | captured walks and acrobatics onto figures built by code: 59 joints, two skins, a stubby game figure |
 //! | `contacts` | feet: which limbs stand, when, and what holding them comes to |
 //! | `csv` | the outside CSV files: the same walk as BVH, figures, a sensor; writing back, new files |
 //! | `commands` | the real program: what it prints, how it ends, what it writes |
@@ -68,6 +69,7 @@ mod blend_export;
 mod blend_feet;
 mod blend_pairs;
 mod bvh;
+mod carry_targets;
 mod commands;
 mod contacts;
 mod csv;

@@ -84,6 +84,8 @@ pub enum CarryState {
     Spread,
     /// It shares in the twist of a limb.
     Twist,
+    /// It moves as the joint does that it is a copy of.
+    Copy,
     /// A person keeps it at rest.
     KeptAtRest,
     /// Nothing drives it.
@@ -98,6 +100,7 @@ impl CarryState {
             Self::ByHand => "by hand",
             Self::Spread => "spread",
             Self::Twist => "twist",
+            Self::Copy => "copy",
             Self::KeptAtRest => "at rest",
             Self::Free => "free",
         }
@@ -192,6 +195,10 @@ fn carry_rows(setting: &RetargetSetting, transfer: Option<&Transfer>) -> Vec<Car
                         None,
                         "it lies on that limb and shares in its twist".to_owned(),
                     )
+                }
+                (Driver::Copy(of), _) => {
+                    let words = format!("as {}", target.skeleton.label(*of));
+                    (None, words, CarryState::Copy, None, target.roles.joints[joint].reason.clone())
                 }
                 (Driver::Rest, _) if setting.map.at_rest.contains(&joint) => (
                     None,

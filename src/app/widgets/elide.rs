@@ -6,19 +6,18 @@ use egui::{Color32, FontId, Galley, Painter, Rect, pos2};
 
 use super::super::view_models::{Shared, shortened};
 
-/// Draws a name in one line from the left of `bounds`, at half its height, and gives whether it had to be cut: then the whole name belongs
-/// under the pointer. A name that is too long gives up first what it shares with the others (`Shared::of` all of them; `Shared::default()` where
-/// it stands for itself), then its middle.
-pub(crate) fn name_ui(
+/// A name in one line of so many points, and whether it had to be cut: then the whole name belongs under the pointer. A name that is too
+/// long gives up first what it shares with the others (`Shared::of` all of them; `Shared::default()` where it stands for itself), then its middle.
+pub(crate) fn name_galley(
     painter: &Painter,
-    bounds: Rect,
+    width: f32,
     name: &str,
     shared: Shared<'_>,
     font: &FontId,
     ink: Color32,
-) -> bool {
+) -> (Arc<Galley>, bool) {
     let layout = |words: String| painter.layout_no_wrap(words, font.clone(), ink);
-    let fits = |galley: &Arc<Galley>| galley.size().x <= bounds.width();
+    let fits = |galley: &Arc<Galley>| galley.size().x <= width;
     let mut galley = layout(name.to_owned());
     let is_cut = !fits(&galley);
     if is_cut {
@@ -27,13 +26,26 @@ pub(crate) fn name_ui(
         if left_away != [false; 2] {
             galley = layout(format!("{}{own}{}", mark(left_away[0]), mark(left_away[1])));
         }
-        let mut kept = (own.chars().count() as f32 * bounds.width() / galley.size().x).floor() as usize;
+        let mut kept = (own.chars().count() as f32 * width / galley.size().x).floor() as usize;
         // Letters differ in width: a few rounds bring what was estimated within its place.
         while !fits(&galley) && kept > 0 {
             kept -= 1;
             galley = layout(shortened(own, kept));
         }
     }
+    (galley, is_cut)
+}
+
+/// Draws a [`name_galley`] from the left of `bounds`, at half its height, and gives whether the name had to be cut.
+pub(crate) fn name_ui(
+    painter: &Painter,
+    bounds: Rect,
+    name: &str,
+    shared: Shared<'_>,
+    font: &FontId,
+    ink: Color32,
+) -> bool {
+    let (galley, is_cut) = name_galley(painter, bounds.width(), name, shared, font, ink);
     painter.galley(pos2(bounds.left(), bounds.center().y - galley.size().y / 2.0), galley, ink);
     is_cut
 }

@@ -56,7 +56,7 @@ pub(crate) fn run(args: &RetargetArgs, output: &mut Output) -> Result<u8, CliErr
     for note in &made.report.notes {
         output.note(&onto.path, note);
     }
-    for line in summary(&made.report, &target.skeleton) {
+    for line in summary(&made.report, &target.skeleton, options.limits.is_some()) {
         output.say(&line);
     }
     if let Some(path) = &args.proof {
@@ -251,8 +251,8 @@ fn open_onto(args: &RetargetArgs, output: &mut Output) -> Result<(Source, Arc<Sk
     Ok((source, skeleton))
 }
 
-/// What it came to, in some lines.
-fn summary(report: &retarget::Report, target: &Skeleton) -> Vec<String> {
+/// What it came to, in some lines; `is_kept` tells that limits were asked for.
+fn summary(report: &retarget::Report, target: &Skeleton, is_kept: bool) -> Vec<String> {
     let [unheld, worst] = [report.unheld_direction_rad, report.worst_direction_rad()].map(f64::to_degrees);
     let before = if report.unheld_direction_rad < report.worst_direction_rad() {
         format!(", {unheld:.3} before anything was held")
@@ -284,8 +284,13 @@ fn summary(report: &retarget::Report, target: &Skeleton) -> Vec<String> {
         let worst = worst.map_or(String::new(), |own| {
             format!("; most used {:.0} %: {}", own.most_use * 100.0, target.label(own.joint))
         });
+        let told = if is_kept {
+            format!("{before} joint frames beyond before, {after} after")
+        } else {
+            format!("{after} joint frames beyond, which is measured only (--limits keeps within)")
+        };
         lines.push(format!(
-            "limits {} of {} joints: {before} joint frames beyond before, {after} after{worst}",
+            "limits {} of {} joints: {told}{worst}",
             report.limits_title,
             report.limits.len()
         ));

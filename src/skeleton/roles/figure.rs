@@ -3,6 +3,7 @@
 use glam::DVec3;
 
 use super::super::{JointKind, Skeleton, Transform};
+use super::copies::copies;
 use super::name::Name;
 use super::words;
 use crate::rotor::Rotor;
@@ -31,6 +32,8 @@ pub(super) struct Figure<'a> {
     pub rotation: Vec<Rotor>,
     /// Whether the joint takes part.
     pub is_active: Vec<bool>,
+    /// The joint that it is a copy of, with another skin; copies take no part.
+    pub copy_of: Vec<Option<usize>>,
     /// Active children, those behind carriers too.
     pub kids: Vec<Vec<usize>>,
     /// Nearest active ancestor.
@@ -68,9 +71,15 @@ impl<'a> Figure<'a> {
             let up = skeleton.joints()[joint].parent;
             is_meant[joint] |= below == Some(joint) || up.is_some_and(|up| is_meant[up]);
         }
+        let copy_of = if n > MOST_JOINTS {
+            vec![None; n]
+        } else {
+            copies(skeleton, rest, &is_meant, &|joint| names[joint].is_helper())
+        };
         let is_active: Vec<bool> = (0..n)
             .map(|joint| {
                 is_meant[joint]
+                    && copy_of[joint].is_none()
                     && skeleton.joints()[joint].kind == JointKind::Joint
                     && !names[joint].is_helper()
                     && !(names[joint].is_end() && skeleton.children(joint).is_empty())
@@ -83,7 +92,8 @@ impl<'a> Figure<'a> {
         for joint in 0..n {
             // Joints stand behind their parents, so the parent's own answer is known.
             let up = skeleton.joints()[joint].parent;
-            let nearest = up.and_then(|up| if is_active[up] { Some(up) } else { parent[up] });
+            // What hangs on a copy hangs on the joint itself.
+            let nearest = up.and_then(|up| if is_active[up] { Some(up) } else { copy_of[up].or(parent[up]) });
             parent[joint] = nearest;
             if is_active[joint] {
                 if let Some(up) = nearest {
@@ -144,6 +154,7 @@ impl<'a> Figure<'a> {
             position,
             rotation,
             is_active,
+            copy_of,
             kids,
             parent,
             tips,

@@ -250,6 +250,11 @@ impl<'f, 'a> Finder<'f, 'a> {
                 "carries the figure and is none of its joints".to_owned()
             } else if name.is_helper() {
                 "the name says that it is a control, a target or a prop".to_owned()
+            } else if let Some(of) = self.figure.copy_of[joint] {
+                format!(
+                    "stands where `{}` does, as for another skin of the same figure, and moves as that does",
+                    self.figure.skeleton.label(of)
+                )
             } else if !self.figure.is_active[joint] {
                 "the name says that it ends a limb".to_owned()
             } else if let Some(chain) = own.chain {
@@ -276,6 +281,7 @@ impl<'f, 'a> Finder<'f, 'a> {
             Some(plan) if plan.legs.is_some() => Body::Upright,
             _ => Body::Unknown,
         };
+        let copies = self.figure.copy_of.iter().enumerate().filter_map(|(copy, of)| Some((copy, (*of)?)));
         let mut twist_helpers = self.twist;
         twist_helpers.retain(|helper| joints[helper.joint].role.is_none());
         twist_helpers.sort_by_key(|helper| helper.joint);
@@ -288,6 +294,7 @@ impl<'f, 'a> Finder<'f, 'a> {
             body,
             shape: self.shape,
             other_figures: self.others,
+            copies: copies.collect(),
             by_role,
         }
     }

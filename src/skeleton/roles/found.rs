@@ -105,6 +105,9 @@ pub struct Roles {
     pub shape: RestShape,
     /// Root joints of further figures in the same file, which got no roles: see [`Roles::find_below`].
     pub other_figures: Vec<usize>,
+    /// Joints that stand where another one does, with all that hangs on them, and that other: a file may bring a figure's joints again for
+    /// each of its skins. Copies play no role.
+    pub copies: Vec<(usize, usize)>,
     pub(super) by_role: BTreeMap<Role, usize>,
 }
 

@@ -8,6 +8,7 @@
 
 mod body;
 mod checks;
+mod copies;
 mod dictionary;
 mod facing;
 mod figure;

@@ -4,13 +4,16 @@ use egui::{Align2, FontId, Key, Rect, Role, ScrollArea, Sense, Ui, WidgetInfo, p
 
 use super::super::super::commands::{CarryCommand, Command};
 use super::super::super::theme::{INSET, Look, ROW_HEIGHT};
-use super::super::super::view_models::{CarryRow, CarryState, with_link, without_link};
-use super::super::super::widgets::{focus_ring, hint, strip};
+use super::super::super::view_models::{CarryRow, CarryState, Shared, with_link, without_link};
+use super::super::super::widgets::{focus_ring, hint, name_galley, name_ui, strip};
 use super::super::Scope;
 use super::{Sheet, change};
 
 /// Height of the editor below the rows.
 const EDITOR: f32 = 92.0;
+
+/// Width of the list of source joints.
+const COMBO: f32 = 150.0;
 
 pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
     let Some(facts) = sheet.facts else {
@@ -158,7 +161,9 @@ fn row_ui(
     if is_chosen && sheet.habits.scroll_to_row {
         response.request_focus();
     }
-    if response.on_hover_text(&row.reason).clicked() {
+    // Whole where the columns cut it.
+    let whole = format!("{} driven by {}\n{}", row.target_label, row.source_label, row.reason);
+    if response.on_hover_text(whole).clicked() {
         let chosen = (!is_chosen).then_some(row.target);
         scope.out.push(Command::Carry(CarryCommand::ChooseRow(chosen)));
     }
@@ -166,6 +171,11 @@ fn row_ui(
 
 fn paint_row(ui: &Ui, row: &CarryRow, bounds: Rect, columns: &Columns, is_chosen: bool, look: &Look) {
     let y = bounds.center().y;
+    // Names are cut in their middle, sentences at their end.
+    let name = |from: f32, to: f32, text: &str, ink: egui::Color32| {
+        let place = Rect::from_min_max(pos2(from, bounds.top()), pos2(to - 6.0, bounds.bottom()));
+        name_ui(ui.painter(), place, text, Shared::default(), &FontId::proportional(13.0), ink);
+    };
     let words = |from: f32, to: f32, text: &str, ink: egui::Color32| {
         let font = FontId::proportional(13.0);
         let mut job = egui::text::LayoutJob::simple_singleline(text.to_owned(), font, ink);
@@ -185,8 +195,8 @@ fn paint_row(ui: &Ui, row: &CarryRow, bounds: Rect, columns: &Columns, is_chosen
     let is_driven = !matches!(row.state, CarryState::Free | CarryState::KeptAtRest);
     // Faint words would not be read on the chosen row.
     let ink = if is_driven || is_chosen { look.text } else { look.faint };
-    words(columns.target, columns.source, &row.target_label, ink);
-    words(columns.source, columns.sure, &row.source_label, ink);
+    name(columns.target, columns.source, &row.target_label, ink);
+    name(columns.source, columns.sure, &row.source_label, ink);
     let sure = match row.confidence {
         Some(own) if row.state == CarryState::Linked => format!("{:.0} %", own * 100.0),
         _ => row.state.word().to_owned(),
@@ -201,13 +211,22 @@ fn editor_ui(ui: &mut Ui, row: &CarryRow, sheet: &Sheet<'_>, scope: &mut Scope<'
     let source = &facts.setting.source.skeleton;
     ui.horizontal(|ui| {
         ui.spacing_mut().item_spacing.x = 6.0;
-        let name = egui::RichText::new(&row.target_label).strong();
-        ui.add(egui::Label::new(name).truncate());
+        let font = egui::TextStyle::Body.resolve(ui.style());
+        let fitted = |ui: &Ui, name: &str, room: f32| {
+            name_galley(ui.painter(), room, name, Shared::default(), &font, scope.look.text).0
+        };
+        // The list beside it keeps its room.
+        let room = (ui.available_width() - COMBO - 90.0).max(40.0);
+        let shown = if row.source.is_some() {
+            egui::WidgetText::from(fitted(ui, &row.source_label, COMBO - 30.0))
+        } else {
+            "choose…".into()
+        };
+        ui.label(fitted(ui, &row.target_label, room)).on_hover_text(&row.target_label);
         ui.label("driven by");
         let mut wanted = None;
-        let shown = if row.source.is_some() { row.source_label.clone() } else { "choose…".to_owned() };
         let combo =
-            egui::ComboBox::from_id_salt("carry source").selected_text(shown).width(150.0).height(320.0);
+            egui::ComboBox::from_id_salt("carry source").selected_text(shown).width(COMBO).height(320.0);
         let response = combo.show_ui(ui, |ui| {
             for joint in source.listed() {
                 if ui.selectable_label(row.source == Some(joint), source.label(joint)).clicked() {
