@@ -62,6 +62,19 @@ impl Degrees {
         }
     }
 
+    /// All triples, shared with whoever else holds them.
+    pub fn into_triples(self) -> Arc<[[f64; 3]]> {
+        let inner = match Arc::try_unwrap(self.0) {
+            Ok(Inner { held: Held::Triples(triples), .. }) => return triples,
+            Ok(other) => Self(Arc::new(other)),
+            Err(shared) => Self(shared),
+        };
+        match &inner.0.held {
+            Held::Triples(triples) => triples.clone(),
+            Held::Whole { .. } | Held::Few { .. } => inner.iter().copied().collect(),
+        }
+    }
+
     fn of(held: Held) -> Self {
         Self(Arc::new(Inner { held, triples: OnceLock::new() }))
     }

@@ -55,6 +55,16 @@ impl Keys {
         })
     }
 
+    /// The rotors as a list of one's own: without a copy where nobody else holds them.
+    pub fn into_vec(self) -> Vec<Rotor> {
+        match Arc::try_unwrap(self.0) {
+            Ok(Inner { stored, angles, .. }) => stored
+                .into_inner()
+                .unwrap_or_else(|| angles.map_or(Vec::new(), |(order, degrees)| rotors(order, &degrees))),
+            Err(shared) => Self(shared).to_vec(),
+        }
+    }
+
     /// [`Keys::sound`] if it is there already.
     pub(super) fn sound_if_made(&self) -> Option<&Streams<f64, 4>> {
         self.0.sound.get()
@@ -129,6 +139,18 @@ mod tests {
         let changed = Keys::from(changed);
         assert!(changed.sound_if_made().is_none());
         assert_eq!(changed.sound().get(1), [0.0, 0.0, 0.0, -1.0]);
+    }
+
+    #[test]
+    fn a_list_of_its_own_is_the_same_list_or_a_copy() {
+        let rotors = vec![Rotor::IDENTITY, Rotor::new(0.0, 1.0, 0.0, 0.0)];
+        let place = rotors.as_ptr();
+        let keys = Keys::from(rotors);
+        let shared = keys.clone();
+        let copy = keys.into_vec();
+        assert_ne!(copy.as_ptr(), place);
+        assert_eq!(shared, Keys::from(copy));
+        assert_eq!(shared.into_vec().as_ptr(), place);
     }
 
     #[test]

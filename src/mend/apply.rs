@@ -9,7 +9,8 @@ use crate::snag::{Plant, Remedy, Snag};
 
 use super::draft::Draft;
 use super::jitter::{self, Noise};
-use super::{MendError, clamp, loop_close, numbers, plant, redraw, stuck, take_out};
+use super::numbers::{self, Unwrap};
+use super::{MendError, clamp, loop_close, plant, redraw, stuck, take_out};
 
 /// `clip` with one snag mended. The same snag in the same clip always gives the same numbers; joints other than the
 /// snag's stay shared, and so does its own when there is nothing to do ([`Remedy::Ask`]).
@@ -65,7 +66,9 @@ fn of_clip(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
 fn of_joints(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
     let mut mended = clip.clone();
     let mut drafts: BTreeMap<usize, Draft> = BTreeMap::new();
-    for snag in snags {
+    let both_unwrap = |a: &Snag, b: &Snag| a.joint == b.joint && is_unwrap(a) && is_unwrap(b);
+    for group in snags.chunk_by(both_unwrap) {
+        let snag = &group[0];
         if asks_others(snag) {
             // It sees what the mends before it made of the other joints.
             for (joint, draft) in drafts.extract_if(.., |joint, _| *joint != snag.joint) {
@@ -77,13 +80,44 @@ fn of_joints(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
             std::collections::btree_map::Entry::Vacant(entry) => entry.insert(draft_of(&mended, snag.joint)?),
         };
         let label = || clip.skeleton.label(snag.joint).to_owned();
-        if snag.first_key > snag.last_key || snag.last_key >= draft.len() {
-            let key = snag.first_key.max(snag.last_key);
+        let is_off = |snag: &&Snag| snag.first_key > snag.last_key || snag.last_key >= draft.len();
+        if let Some(off) = group.iter().find(is_off) {
+            let key = off.first_key.max(off.last_key);
             return Err(MendError::NoSuchKey { joint: label(), count: draft.len(), key });
         }
-        mend(draft, &mended, snag);
+        mend_row(draft, &mended, group);
     }
     Ok(drafts.into_iter().fold(mended, |mended, (joint, draft)| finished(mended, joint, draft)))
+}
+
+fn is_unwrap(snag: &Snag) -> bool {
+    matches!(snag.remedy, Remedy::Unwrap(_))
+}
+
+/// Mends snags of one joint one after the other, and gives for each the largest change of orientation at a key, in radians.
+pub(super) fn mend_row(draft: &mut Draft, clip: &Clip, snags: &[Snag]) -> Vec<f64> {
+    let mut changes = Vec::with_capacity(snags.len());
+    for group in snags.chunk_by(|a, b| is_unwrap(a) && is_unwrap(b)) {
+        if is_unwrap(&group[0]) {
+            let runs: Vec<Unwrap> = group
+                .iter()
+                .filter_map(|snag| match snag.remedy {
+                    Remedy::Unwrap(turns) => {
+                        Some(Unwrap { first: snag.first_key, last: snag.last_key, turns })
+                    }
+                    _ => None,
+                })
+                .collect();
+            numbers::unwrap(draft, &runs);
+            changes.extend(group.iter().map(|_| 0.0));
+        } else {
+            for snag in group {
+                mend(draft, clip, snag);
+                changes.push(draft.take_change());
+            }
+        }
+    }
+    changes
 }
 
 /// Whether the mend of a snag depends on what other joints do.
@@ -110,12 +144,12 @@ fn draft_of(clip: &Clip, joint: usize) -> Result<Draft, MendError> {
 }
 
 /// Mends one snag whose keys exist in the draft. `clip` is what the other joints do.
-pub(super) fn mend(draft: &mut Draft, clip: &Clip, snag: &Snag) {
+fn mend(draft: &mut Draft, clip: &Clip, snag: &Snag) {
     let (first, last) = (snag.first_key, snag.last_key);
     match snag.remedy {
         Remedy::Normalise => numbers::normalise(draft, first..=last),
         Remedy::Negate => numbers::negate(draft, first..=last),
-        Remedy::Unwrap(turns) => numbers::unwrap(draft, first..=last, turns),
+        Remedy::Unwrap(turns) => numbers::unwrap(draft, &[Unwrap { first, last, turns }]),
         Remedy::NearestAngles => numbers::nearest(draft, first, last),
         Remedy::Redraw => redraw::redraw(draft, first, last),
         Remedy::FromOthers => stuck::redraw_from_others(draft, clip, snag.joint, first, last),
@@ -171,7 +205,18 @@ pub fn change_at_snag_rad(before: &Clip, after: &Clip, snag: &Snag) -> f64 {
 
 /// The largest turn between two tracks of the same key times, at the keys `first..=last` and in the middles between.
 pub(super) fn change_of_keys_rad(old: &RotationTrack, new: &RotationTrack, first: usize, last: usize) -> f64 {
-    let at_keys = (first..=last.min(old.keys.len().saturating_sub(1))).map(|key| old.times.at(key));
-    let middles = (first..last).map(|key| 0.5 * (old.times.at(key) + old.times.at(key + 1)));
-    at_keys.chain(middles).map(|time| old.at(time).turn_to(new.at(time))).fold(0.0, f64::max)
+    /// Keys that are looked at together.
+    const TILE: usize = 1024;
+    let last = last.min(old.keys.len().saturating_sub(1));
+    let mut largest = 0.0_f64;
+    for start in (first..=last).step_by(TILE) {
+        let end = (start + TILE - 1).min(last);
+        let at_keys = (start..=end).map(|key| old.times.at(key));
+        let middles =
+            (start..(end + 1).min(last)).map(|key| 0.5 * (old.times.at(key) + old.times.at(key + 1)));
+        let times: Vec<f64> = at_keys.chain(middles).collect();
+        let pairs = old.at_all(&times).into_iter().zip(new.at_all(&times));
+        largest = pairs.map(|(old, new)| old.turn_to(new)).fold(largest, f64::max);
+    }
+    largest
 }

@@ -1,6 +1,9 @@
 //! A rotation track under mending: numbers that can be changed in place, in the file's own form too.
 
-use crate::clip::{FileAngles, PathKind, Paths, RotationTrack, Segments, Stored, Times};
+use std::ops::{Deref, DerefMut, Range};
+use std::sync::Arc;
+
+use crate::clip::{FileAngles, Keys, PathKind, Paths, RotationTrack, Segments, Stored, Times};
 use crate::rotor::{Axis, Bivector, EulerOrder, Rotor};
 use crate::snag::nearest_plane_angles;
 
@@ -8,15 +11,47 @@ use crate::snag::nearest_plane_angles;
 #[derive(Clone, Debug)]
 pub(super) enum Form {
     Rotors,
-    Angles { axes: Vec<Axis>, order: EulerOrder, degrees: Vec<[f64; 3]> },
-    PlaneAngles(Vec<[f64; 3]>),
+    Angles { axes: Vec<Axis>, order: EulerOrder, degrees: Arc<[[f64; 3]]> },
+    PlaneAngles(Arc<[[f64; 3]]>),
+}
+
+/// The rotors of a track; copied when one is changed, and not even then where nobody else holds them.
+#[derive(Clone, Debug)]
+pub(super) enum Rotors {
+    Lent(Keys),
+    Own(Vec<Rotor>),
+}
+
+impl Deref for Rotors {
+    type Target = [Rotor];
+
+    fn deref(&self) -> &[Rotor] {
+        match self {
+            Self::Lent(keys) => keys,
+            Self::Own(keys) => keys,
+        }
+    }
+}
+
+impl DerefMut for Rotors {
+    fn deref_mut(&mut self) -> &mut [Rotor] {
+        if let Self::Lent(keys) = self {
+            let keys = std::mem::replace(keys, Vec::new().into());
+            *self = Self::Own(keys.into_vec());
+        }
+        match self {
+            Self::Own(keys) => keys,
+            // Just made its own.
+            Self::Lent(_) => &mut [],
+        }
+    }
 }
 
 /// A track whose keys are being changed. Many mends share one draft, so each costs no more than its own keys.
 #[derive(Clone, Debug)]
 pub(super) struct Draft {
     pub(super) times: Times,
-    pub(super) keys: Vec<Rotor>,
+    pub(super) keys: Rotors,
     pub(super) paths: Paths,
     pub(super) tangents: Option<Vec<[Rotor; 2]>>,
     segments: Segments,
@@ -24,46 +59,79 @@ pub(super) struct Draft {
     /// Largest change of orientation at a key since the last [`Draft::take_change`], in radians.
     change_rad: f64,
     is_changed: bool,
+    /// Keys whose rotor was changed, as runs in the order of their mends.
+    touched: Vec<Range<usize>>,
 }
 
 impl Draft {
     pub(super) fn new(track: &RotationTrack) -> Self {
-        let form = match &track.stored {
+        Self::of(track.clone())
+    }
+
+    /// Of a track that is no longer needed: what nobody else holds of it is not copied.
+    pub(super) fn of(track: RotationTrack) -> Self {
+        let form = match track.stored {
             Stored::Rotors => Form::Rotors,
             Stored::Angles(FileAngles { axes, order, degrees }) => {
-                Form::Angles { axes: axes.clone(), order: *order, degrees: degrees.to_vec() }
+                Form::Angles { axes, order, degrees: degrees.into_triples() }
             }
-            Stored::PlaneAngles(degrees) => Form::PlaneAngles(degrees.to_vec()),
+            Stored::PlaneAngles(degrees) => Form::PlaneAngles(degrees),
         };
         Self {
-            times: track.times.clone(),
-            keys: track.keys.to_vec(),
-            paths: track.paths.clone(),
+            times: track.times,
+            keys: Rotors::Lent(track.keys),
+            paths: track.paths,
             tangents: track.tangents.as_ref().map(|tangents| tangents.to_vec()),
-            segments: track.segments.clone(),
+            segments: track.segments,
             form,
             change_rad: 0.0,
             is_changed: false,
+            touched: Vec::new(),
         }
     }
 
     /// The track as it is now; `None` when nothing was changed.
     pub(super) fn finish(self) -> Option<RotationTrack> {
+        self.is_changed.then(|| self.into_track().0)
+    }
+
+    /// The track as it is now, and the keys whose rotors were changed, as runs in the order of the keys.
+    pub(super) fn into_track(self) -> (RotationTrack, Vec<Range<usize>>) {
+        let mut touched = self.touched;
+        touched.sort_by_key(|run| run.start);
         let stored = match self.form {
             Form::Rotors => Stored::Rotors,
             Form::Angles { axes, order, degrees } => {
                 Stored::Angles(FileAngles { axes, order, degrees: degrees.into() })
             }
-            Form::PlaneAngles(degrees) => Stored::PlaneAngles(degrees.into()),
+            Form::PlaneAngles(degrees) => Stored::PlaneAngles(degrees),
         };
-        self.is_changed.then(|| RotationTrack {
+        let keys = match self.keys {
+            Rotors::Lent(keys) => keys,
+            Rotors::Own(keys) => keys.into(),
+        };
+        let track = RotationTrack {
             times: self.times,
-            keys: self.keys.into(),
+            keys,
             paths: self.paths,
             tangents: self.tangents.map(Into::into),
             segments: self.segments,
             stored,
-        })
+        };
+        (track, touched)
+    }
+
+    fn touch(&mut self, key: usize) {
+        self.is_changed = true;
+        match self.touched.last_mut() {
+            Some(run) if run.contains(&key) => {}
+            Some(run) if run.end == key => run.end = key + 1,
+            _ => self.touched.push(key..key + 1),
+        }
+    }
+
+    pub(super) fn is_changed(&self) -> bool {
+        self.is_changed
     }
 
     /// Largest change of orientation at a key since this was last asked, in radians.
@@ -103,15 +171,51 @@ impl Draft {
         if let (Some(own), Some(tangents)) = (&mut self.tangents, tangents) {
             own[key] = tangents;
         }
-        self.is_changed = true;
+        self.touch(key);
     }
 
     /// Other angles for the same orientation; the rotor stays as it is.
     pub(super) fn set_angles(&mut self, key: usize, triple: [f64; 3]) {
         if let Form::Angles { degrees, .. } | Form::PlaneAngles(degrees) = &mut self.form {
-            degrees[key] = triple;
+            Arc::make_mut(degrees)[key] = triple;
             self.is_changed = true;
         }
+    }
+
+    /// Adds `step` to one of the file angles of some keys, `times` times, as if each sum were rounded.
+    ///
+    /// A sum of whole turns is rounded where it comes to be so large that it has a digit less, and between two such places not at all.
+    /// So steps that together no more than double what is there may be made in one.
+    pub(super) fn add_to_angles(&mut self, keys: Range<usize>, channel: usize, step: f64, times: u32) {
+        /// Keys that are gone over together.
+        const TILE: usize = 64;
+        let Form::Angles { degrees, .. } = &mut self.form else { return };
+        let rows = &mut Arc::make_mut(degrees)[keys];
+        let largest = rows.iter().map(|row| row[channel].abs()).fold(0.0, f64::max);
+        let mut strides: Vec<f64> = Vec::new();
+        let mut done = 0;
+        while done < times {
+            // From here on the sums are at least this large.
+            let least = f64::from(done) * step.abs() - largest;
+            let room = (0.9 * (least - 2.0 * largest) / step.abs()).clamp(1.0, f64::from(times - done));
+            strides.push(step * room.floor());
+            done += room as u32;
+        }
+        for rows in rows.chunks_mut(TILE) {
+            let mut sums = [0.0; TILE];
+            for (sum, row) in sums.iter_mut().zip(&*rows) {
+                *sum = row[channel];
+            }
+            for stride in &strides {
+                for sum in &mut sums {
+                    *sum += stride;
+                }
+            }
+            for (sum, row) in sums.iter().zip(rows) {
+                row[channel] = *sum;
+            }
+        }
+        self.is_changed = true;
     }
 
     /// Another orientation; unit. Its numbers are the nearest to those of the key before (at the start, to those of the
@@ -134,16 +238,16 @@ impl Draft {
                     triple[axes.len()..].fill(0.0);
                     rotor = order.to_rotor(triple).aligned_to(rotor);
                 }
-                degrees[key] = triple.map(f64::to_degrees);
+                Arc::make_mut(degrees)[key] = triple.map(f64::to_degrees);
             }
             Form::PlaneAngles(degrees) => {
                 let near = Bivector::from_degrees(finite_or_zero(degrees[near]));
-                degrees[key] = nearest_plane_angles(rotor.plane_angles(), near).to_degrees();
+                Arc::make_mut(degrees)[key] = nearest_plane_angles(rotor.plane_angles(), near).to_degrees();
             }
         }
         self.keys[key] = rotor;
         self.change_rad = self.change_rad.max(was.turn_to(rotor));
-        self.is_changed = true;
+        self.touch(key);
     }
 }
 

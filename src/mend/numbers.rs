@@ -32,16 +32,46 @@ fn tangents_of(draft: &Draft, key: usize) -> Option<[Rotor; 2]> {
     draft.tangents.as_ref().map(|tangents| tangents[key])
 }
 
-/// Adds whole turns to the three file angles of keys.
-pub(super) fn unwrap(draft: &mut Draft, keys: RangeInclusive<usize>, turns: [i32; 3]) {
-    for key in keys {
-        if let Form::Angles { degrees, .. } = &draft.form {
-            let own = degrees[key];
-            let shifted = std::array::from_fn(|i| {
-                // An angle without a turn to take keeps its bits, a negative 0 included.
-                if turns[i] == 0 { own[i] } else { own[i] + 360.0 * f64::from(turns[i]) }
-            });
-            draft.set_angles(key, shifted);
+/// Whole turns that are to be added to the three file angles of some keys.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Unwrap {
+    pub(super) first: usize,
+    pub(super) last: usize,
+    pub(super) turns: [i32; 3],
+}
+
+/// Adds whole turns to file angles: the very same numbers as one run of keys after the other would give.
+///
+/// All that follows a wrap is a turn off, so that runs lie in one another, and each key would be gone over as often as there are
+/// wraps before it. Here each is gone over once.
+pub(super) fn unwrap(draft: &mut Draft, runs: &[Unwrap]) {
+    let mut borders: Vec<usize> = runs.iter().flat_map(|run| [run.first, run.last + 1]).collect();
+    borders.sort_unstable();
+    borders.dedup();
+    // In the order of `runs`: sorted by their first keys they open at the end of this list.
+    let mut opening: Vec<usize> = (0..runs.len()).collect();
+    opening.sort_by_key(|&run| runs[run].first);
+    let mut opening = opening.into_iter().peekable();
+    let mut open: Vec<usize> = Vec::new();
+    for two in borders.windows(2) {
+        let (from, until) = (two[0], two[1]);
+        open.retain(|&run| runs[run].last >= from);
+        while let Some(run) = opening.next_if(|&run| runs[run].first == from) {
+            let place = open.partition_point(|&other| other < run);
+            open.insert(place, run);
+        }
+        for channel in 0..3 {
+            let turns = open.iter().map(|&run| runs[run].turns[channel]).filter(|turns| *turns != 0);
+            let mut each: Vec<(i32, u32)> = Vec::new();
+            for turns in turns {
+                match each.last_mut() {
+                    Some((own, times)) if *own == turns => *times += 1,
+                    _ => each.push((turns, 1)),
+                }
+            }
+            for (turns, times) in each {
+                draft.add_to_angles(from..until, channel, 360.0 * f64::from(turns), times);
+            }
         }
     }
 }
@@ -91,8 +121,55 @@ pub(super) fn short_way(draft: &mut Draft, key: usize) {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::clip::{Paths, RotationTrack, Times};
-    use crate::rotor::Axis;
+    use crate::clip::{FileAngles, Paths, RotationTrack, Times};
+    use crate::rotor::{Axis, EulerOrder};
+
+    #[test]
+    fn runs_in_one_another_come_to_the_very_numbers_of_one_after_the_other() {
+        const COUNT: usize = 600;
+        let mut state = 7_u64;
+        let mut whole = |most: u64| {
+            state = state.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1);
+            (state >> 33) % most
+        };
+        for case in 0..40 {
+            let wide = [0.3, 180.0, 1000.0][case % 3];
+            let mut angle = || wide * (whole(2_000_001) as f64 * 1e-6 - 1.0);
+            let degrees: Vec<[f64; 3]> = (0..COUNT).map(|_| [angle(), angle(), -0.0]).collect();
+            let sign = if case % 2 == 0 { 1 } else { -1 };
+            let mut runs: Vec<Unwrap> = (0..60)
+                .map(|_| {
+                    let first = whole(COUNT as u64) as usize;
+                    let to_end = whole(4) > 0;
+                    let last = if to_end { COUNT - 1 } else { (first + whole(50) as usize).min(COUNT - 1) };
+                    let turns = [sign, if whole(5) == 0 { -sign } else { 0 }, 0];
+                    Unwrap { first, last, turns }
+                })
+                .collect();
+            runs.sort_by_key(|run| (run.first, run.last));
+            let mut wanted = degrees.clone();
+            for run in &runs {
+                for own in &mut wanted[run.first..=run.last] {
+                    for (angle, turns) in own.iter_mut().zip(run.turns).filter(|(_, turns)| *turns != 0) {
+                        *angle += 360.0 * f64::from(turns);
+                    }
+                }
+            }
+            let angles = FileAngles {
+                axes: EulerOrder::ZXY.axes().to_vec(),
+                order: EulerOrder::ZXY,
+                degrees: degrees.into(),
+            };
+            let times = Times::Even { step_secs: 0.01, count: COUNT };
+            let mut draft = Draft::new(&RotationTrack::from_angles(times, angles));
+            unwrap(&mut draft, &runs);
+            let mended = draft.finish().unwrap();
+            let found = &mended.file_angles().unwrap().degrees;
+            for (key, (own, wanted)) in found.iter().zip(&wanted).enumerate() {
+                assert_eq!(own.map(f64::to_bits), wanted.map(f64::to_bits), "case {case}, key {key}");
+            }
+        }
+    }
 
     #[test]
     fn the_short_way_leaves_every_other_segment_as_it_is_played() {

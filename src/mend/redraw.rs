@@ -250,10 +250,10 @@ mod tests {
         ));
         redraw(&mut draft, 0, 0);
         redraw(&mut draft, 2, 2);
-        assert_eq!(draft.keys, [sound, sound, sound]);
+        assert_eq!(draft.keys[..], [sound, sound, sound]);
         let lone = RotationTrack::from_rotors(Times::Even { step_secs: 0.1, count: 1 }, vec![nan]);
         let mut draft = Draft::new(&lone);
         redraw(&mut draft, 0, 0);
-        assert_eq!(draft.keys, [Rotor::IDENTITY]);
+        assert_eq!(draft.keys[..], [Rotor::IDENTITY]);
     }
 }

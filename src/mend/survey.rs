@@ -6,14 +6,14 @@ use std::sync::{Arc, OnceLock};
 
 use rayon::prelude::*;
 
-use crate::clip::{Clip, RotationTrack};
+use crate::clip::{Clip, JointTracks, RotationTrack};
 use crate::limit::Limits;
 use crate::snag::{
-    Cancelled, Memory, Progress, Remedy, Snag, SnagKind, find, find_half_turns, find_in_clip,
-    find_past_limit, find_with, preset_limits,
+    Cancelled, Memory, Outline, Outlines, Progress, Remedy, Snag, SnagKind, View, find, find_half_turns,
+    find_in_clip, find_past_limit, find_with, preset_limits,
 };
 
-use super::apply::{apply_all, asks_others, change_at_snag_rad, change_of_keys_rad, mend};
+use super::apply::{apply_all, asks_others, change_at_snag_rad, change_of_keys_rad, mend_row};
 use super::draft::Draft;
 
 /// What to look for.
@@ -64,6 +64,7 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
     // Faults of stored numbers concern one joint alone: all of them in one go, joint by joint.
     let (own, others): (Vec<SnagKind>, Vec<SnagKind>) =
         kinds.into_iter().partition(|kind| kind.is_of_joint_alone());
+    let unseen = Outlines::new(clip.joints.len());
     let outcomes: Vec<(Vec<(Snag, f64)>, Clip)> = (0..clip.joints.len())
         .into_par_iter()
         .map(|joint| {
@@ -73,7 +74,9 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
                 if stopped.load(Ordering::Relaxed) {
                     break;
                 }
-                let outcome = mended(&working, joint, find_with(&working, joint, kind, &mut memory));
+                // Faults of numbers ask for no outline.
+                let view = View { clip: &working, outlines: &unseen };
+                let outcome = mended(&working, joint, find_with(view, joint, kind, &mut memory));
                 snags.extend(outcome.snags);
                 if let Some(track) = outcome.mended {
                     working = working.with_rotation(joint, track);
@@ -98,55 +101,62 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
         Some(limits) => Some(&**limits),
         None => preset.get_or_init(|| preset_limits(clip)).as_ref(),
     };
+    let mut outlines = Outlines::new(clip.joints.len());
     for kind in others {
         if kind.is_of_clip() {
             found.extend(of_clip(&mut working, kind));
+            outlines = Outlines::new(clip.joints.len());
             let whole = clip.joints.len();
             if !progress.report(done.fetch_add(whole, Ordering::Relaxed) + whole, total) {
                 return Err(Cancelled);
             }
             continue;
         }
-        let outcomes: Vec<JointOutcome> = (0..clip.joints.len())
+        let view = View { clip: &working, outlines: &outlines };
+        let told: Vec<Vec<Snag>> = (0..clip.joints.len())
             .into_par_iter()
             .map(|joint| {
                 if stopped.load(Ordering::Relaxed) {
-                    return JointOutcome::default();
+                    return Vec::new();
                 }
                 let snags = match (kind, options.limits.as_deref()) {
                     (SnagKind::PastLimit, Some(limits)) => find_past_limit(&working, joint, limits),
-                    (SnagKind::HalfTurn, _) => find_half_turns(&working, joint, &side_limits),
-                    _ => find(&working, joint, kind),
+                    (SnagKind::HalfTurn, _) => find_half_turns(view, joint, &side_limits),
+                    _ => find_with(view, joint, kind, &mut Memory::default()),
                 };
-                let outcome = one_joint(&working, joint, snags);
                 if !progress.report(done.fetch_add(1, Ordering::Relaxed) + 1, total) {
                     stopped.store(true, Ordering::Relaxed);
                 }
-                outcome
+                snags
             })
             .collect();
         if stopped.load(Ordering::Relaxed) {
             return Err(Cancelled);
         }
-        for (joint, mut outcome) in outcomes.into_iter().enumerate() {
-            if !outcome.asking.is_empty() {
-                // One after the other: each sees what the mends before it made of the other joints.
-                outcome = mended(&working, joint, outcome.asking);
+        if told.iter().flatten().any(asks_others) {
+            // One after the other: each sees what the mends before it made of the other joints.
+            for (joint, snags) in told.into_iter().enumerate() {
+                let outcome = mended(&working, joint, snags);
+                found.extend(outcome.snags);
+                if let Some(track) = outcome.mended {
+                    working = working.with_rotation(joint, track);
+                    outlines.forget(joint);
+                }
             }
-            found.extend(outcome.snags);
-            if let Some(track) = outcome.mended {
-                working = working.with_rotation(joint, track);
-            }
+        } else {
+            let slots = working.joints.par_iter_mut().zip(outlines.each_mut()).zip(told);
+            let outcomes: Vec<Vec<(Snag, f64)>> = slots
+                .map(|((tracks, outline), snags)| mended_in_place(clip, tracks, outline, snags))
+                .collect();
+            found.extend(outcomes.into_iter().flatten());
         }
     }
     if options.kinds.contains(&SnagKind::Wrap) {
-        let count = found.len();
-        wraps_left(clip, &mut working, &mut found);
-        if found.len() > count {
-            // In mending order from the start, as everyone makes these mends: the same bits.
-            let mut sorted: Vec<Snag> = found.iter().map(|(snag, _)| snag.clone()).collect();
-            sorted.sort_by_key(|snag| (snag.kind, snag.joint, snag.first_key, snag.last_key));
-            working = apply_all(clip, &sorted).unwrap_or(working);
+        let left = wraps_left(clip, &working, &found);
+        if !left.is_empty() {
+            let joints: BTreeSet<usize> = left.iter().map(|snag| snag.joint).collect();
+            found.extend(left.into_iter().map(|snag| (snag, 0.0)));
+            working = mended_anew(clip, working, &found, &joints);
         }
     }
     drop_told_twice(&mut found);
@@ -157,37 +167,78 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
 
 /// Whole turns that a jump of the pose has hidden: where a mend has taken the jump away, what follows may still be stored a turn off.
 /// Such a mend only adds whole turns to keys behind the earlier mend, so that it may be made before or after it.
-fn wraps_left(clip: &Clip, working: &mut Clip, found: &mut Vec<(Snag, f64)>) {
-    let jumped: BTreeSet<usize> = found
-        .iter()
-        .filter(|(snag, _)| {
-            matches!(snag.kind, SnagKind::HalfTurn | SnagKind::Spike) && snag.remedy != Remedy::Ask
-        })
-        .map(|(snag, _)| snag.joint)
-        .collect();
-    for joint in jumped {
-        if clip.same_joint(working, joint) {
-            continue;
-        }
-        // A run follows the numbers before it, so both must be shifted alike.
-        let splits = |wrap: &Snag| {
-            found.iter().any(|(snag, _)| {
-                let is_run = snag.joint == joint && !snag.kind.keeps_pose() && snag.remedy != Remedy::Ask;
-                let run = snag.first_key.saturating_sub(1)..=snag.last_key;
-                let shared = run.clone().filter(|key| (wrap.first_key..=wrap.last_key).contains(key)).count();
-                is_run && shared > 0 && shared < run.count()
-            })
-        };
-        let left: Vec<Snag> = find(working, joint, SnagKind::Wrap)
-            .into_iter()
-            .filter(|snag| matches!(snag.remedy, Remedy::Unwrap(_)))
-            .filter(|snag| !splits(snag))
-            .collect();
-        if let (false, Ok(mended)) = (left.is_empty(), apply_all(working, &left)) {
-            *working = mended;
-            found.extend(left.into_iter().map(|snag| (snag, 0.0)));
+fn wraps_left(clip: &Clip, working: &Clip, found: &[(Snag, f64)]) -> Vec<Snag> {
+    let mut jumped = vec![false; clip.joints.len()];
+    let mut runs: Vec<Vec<(usize, usize)>> = vec![Vec::new(); clip.joints.len()];
+    for (snag, _) in found.iter().filter(|(snag, _)| snag.remedy != Remedy::Ask) {
+        jumped[snag.joint] |= matches!(snag.kind, SnagKind::HalfTurn | SnagKind::Spike);
+        if !snag.kind.keeps_pose() {
+            // A run follows the numbers before it, so both must be shifted alike.
+            runs[snag.joint].push((snag.first_key.saturating_sub(1), snag.last_key));
         }
     }
+    let joints = runs.into_par_iter().enumerate();
+    joints
+        .filter(|(joint, _)| jumped[*joint] && !clip.same_joint(working, *joint))
+        .flat_map_iter(|(joint, runs)| {
+            let borders = Borders::new(runs);
+            let told = find(working, joint, SnagKind::Wrap);
+            told.into_iter().filter(move |wrap| {
+                let splits = borders.are_within(wrap.first_key) || borders.are_within(wrap.last_key + 1);
+                matches!(wrap.remedy, Remedy::Unwrap(_)) && !splits
+            })
+        })
+        .collect()
+}
+
+/// Runs of keys, asked for borders that lie within one of them.
+struct Borders {
+    /// For runs in the order of their first keys: that, and the last key of this run and all before it.
+    reach: Vec<(usize, usize)>,
+}
+
+impl Borders {
+    fn new(mut runs: Vec<(usize, usize)>) -> Self {
+        runs.sort_unstable();
+        let mut farthest = 0;
+        for (_, last) in &mut runs {
+            farthest = farthest.max(*last);
+            *last = farthest;
+        }
+        Self { reach: runs }
+    }
+
+    /// Whether a run holds both `key` and the key before.
+    fn are_within(&self, key: usize) -> bool {
+        let before = self.reach.partition_point(|(first, _)| *first < key);
+        before > 0 && self.reach[before - 1].1 >= key
+    }
+}
+
+/// The clip with all mends made in mending order from the start, as everyone makes them: the same bits. `working` is what they came to
+/// before some wraps were found in `joints`.
+fn mended_anew(clip: &Clip, mut working: Clip, found: &[(Snag, f64)], joints: &BTreeSet<usize>) -> Clip {
+    let is_bound = |snag: &Snag| asks_others(snag) || snag.kind.is_of_clip();
+    let in_order = |snag: &Snag| (snag.kind, snag.joint, snag.first_key, snag.last_key);
+    if found.iter().any(|(snag, _)| is_bound(snag)) {
+        let mut sorted: Vec<Snag> = found.iter().map(|(snag, _)| snag.clone()).collect();
+        sorted.sort_by_key(in_order);
+        return apply_all(clip, &sorted).unwrap_or(working);
+    }
+    // Each joint for itself; the others are as they are.
+    let mut own: Vec<Vec<Snag>> = vec![Vec::new(); clip.joints.len()];
+    for (snag, _) in found.iter().filter(|(snag, _)| joints.contains(&snag.joint)) {
+        own[snag.joint].push(snag.clone());
+    }
+    working.joints.par_iter_mut().zip(&clip.joints).zip(own).for_each(|((tracks, source), mut snags)| {
+        if !snags.is_empty() {
+            snags.sort_by_key(in_order);
+            // What it was gives its memory back first.
+            tracks.clone_from(source);
+            mended_in_place(clip, tracks, None, snags);
+        }
+    });
+    working
 }
 
 /// The snags of a kind of the whole clip with the changes of their mends, which are made in `working`.
@@ -230,15 +281,6 @@ struct JointOutcome {
     /// Each with the change of its mend in radians.
     snags: Vec<(Snag, f64)>,
     mended: Option<RotationTrack>,
-    /// Found, and mended when it is this joint's turn, since what other joints do matters.
-    asking: Vec<Snag>,
-}
-
-fn one_joint(clip: &Clip, joint: usize, snags: Vec<Snag>) -> JointOutcome {
-    if snags.iter().any(asks_others) {
-        return JointOutcome { asking: snags, ..JointOutcome::default() };
-    }
-    mended(clip, joint, snags)
 }
 
 /// The snags of a joint with the changes of their mends, and its track after them.
@@ -246,25 +288,60 @@ fn mended(clip: &Clip, joint: usize, snags: Vec<Snag>) -> JointOutcome {
     let Some(track) = clip.rotation(joint).filter(|_| !snags.is_empty()) else {
         return JointOutcome::default();
     };
-    let kind = snags[0].kind;
-    if snags.iter().all(|snag| snag.remedy == Remedy::Ask) {
-        let snags = snags.into_iter().map(|snag| (snag, 0.0)).collect();
-        return JointOutcome { snags, ..JointOutcome::default() };
+    let is_long_way = snags[0].kind == SnagKind::LongWay;
+    if are_all_asked(&snags) {
+        return JointOutcome { snags: without_change(snags), mended: None };
     }
     let mut draft = Draft::new(track);
-    let mut snags: Vec<(Snag, f64)> = snags
-        .into_iter()
-        .map(|snag| {
-            mend(&mut draft, clip, &snag);
-            (snag, draft.take_change())
-        })
-        .collect();
+    let mut changes = mend_row(&mut draft, clip, &snags);
     let mended = draft.finish();
-    if let (SnagKind::LongWay, Some(mended)) = (kind, &mended) {
+    if let (true, Some(mended)) = (is_long_way, &mended) {
         // Both keys are right as they are: what changes lies between them.
-        for (snag, change) in &mut snags {
+        for (snag, change) in snags.iter().zip(&mut changes) {
             *change = change_of_keys_rad(track, mended, snag.first_key, snag.last_key);
         }
     }
-    JointOutcome { snags, mended, asking: Vec::new() }
+    JointOutcome { snags: snags.into_iter().zip(changes).collect(), mended }
+}
+
+/// Mends snags that ask for no other joint in the tracks themselves, which are copied where others share them, and gives them with the
+/// changes of their mends. `outline` is told what changes.
+fn mended_in_place(
+    clip: &Clip,
+    tracks: &mut Arc<JointTracks>,
+    outline: Option<&mut Outline>,
+    snags: Vec<Snag>,
+) -> Vec<(Snag, f64)> {
+    if are_all_asked(&snags) {
+        return without_change(snags);
+    }
+    let (mut own, shared) = match Arc::try_unwrap(std::mem::take(tracks)) {
+        Ok(own) => (own, None),
+        Err(shared) => ((*shared).clone(), Some(shared)),
+    };
+    let mut changes = Vec::new();
+    if let Some(track) = own.rotation.take() {
+        let mut draft = Draft::of(track);
+        changes = mend_row(&mut draft, clip, &snags);
+        if let (false, Some(shared)) = (draft.is_changed(), &shared) {
+            // Still shared.
+            tracks.clone_from(shared);
+            return snags.into_iter().zip(changes).collect();
+        }
+        let (track, touched) = draft.into_track();
+        if let Some(outline) = outline {
+            outline.look_again(&track, &touched);
+        }
+        own.rotation = Some(track);
+    }
+    *tracks = Arc::new(own);
+    snags.into_iter().zip(changes).collect()
+}
+
+fn are_all_asked(snags: &[Snag]) -> bool {
+    snags.iter().all(|snag| snag.remedy == Remedy::Ask)
+}
+
+fn without_change(snags: Vec<Snag>) -> Vec<(Snag, f64)> {
+    snags.into_iter().map(|snag| (snag, 0.0)).collect()
 }

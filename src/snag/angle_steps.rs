@@ -1,11 +1,12 @@
 //! Steps of a stored angle over half a turn, told apart: a wrap while the joint hardly moves, or a real move that the
 //! file may mean.
 
+use std::cell::OnceCell;
 use std::collections::BTreeMap;
 
 use crate::clip::FileAngles;
 
-use super::branches::{Branches, short};
+use super::branches::{Branches, is_finite, short};
 use super::scan::Scan;
 
 /// The joint hardly moves below this, whatever its rates.
@@ -103,22 +104,25 @@ fn starts_apart(angles: &FileAngles, channel: usize, until: usize) -> bool {
 
 /// All steps over half a turn between keys on the kept branch, in order.
 fn angle_steps(scan: &Scan<'_>, angles: &FileAngles, branches: &Branches) -> Vec<AngleStep> {
-    let lows: [f64; 3] = std::array::from_fn(|channel| usual_low(angles, channel));
+    let degrees: &[[f64; 3]] = &angles.degrees;
+    let lows = [const { OnceCell::new() }; 3];
     let mut steps = Vec::new();
     let mut before: Option<(usize, [i32; 3])> = None;
-    for key in 0..angles.degrees.len() {
-        let Some(row) = branches.row[key].filter(|_| !branches.mirrored[key]) else { continue };
-        let stored = angles.degrees[key];
-        let level: [i32; 3] = std::array::from_fn(|i| ((row[i] - stored[i]) / 360.0).round() as i32);
+    for (stretch, end) in branches.stretches(degrees.len()).filter(|(stretch, _)| !stretch.is_mirrored) {
+        let is_sound = |key: &usize| is_finite(&degrees[*key]);
+        let (Some(key), Some(last)) =
+            ((stretch.first..end).find(is_sound), (stretch.first..end).rev().find(is_sound))
+        else {
+            continue;
+        };
+        let level = stretch.turns.map(|turns| turns as i32);
         if let Some((near, near_level)) = before {
             for channel in 0..3 {
                 // Angles beyond ±2³¹ turns have no digits left for the turn itself.
                 let turns = level[channel].saturating_sub(near_level[channel]);
                 if turns != 0 {
-                    let inside = |key: usize| {
-                        let angle = angles.degrees[key][channel] - lows[channel];
-                        (-1e-3..=360.001).contains(&angle)
-                    };
+                    let low = lows[channel].get_or_init(|| usual_low(degrees, channel));
+                    let inside = |key: usize| (-1e-3..=360.001).contains(&(degrees[key][channel] - low));
                     steps.push(AngleStep {
                         key,
                         channel,
@@ -129,18 +133,20 @@ fn angle_steps(scan: &Scan<'_>, angles: &FileAngles, branches: &Branches) -> Vec
                 }
             }
         }
-        before = Some((key, level));
+        before = Some((last, level));
     }
     steps
 }
 
 /// Where the usual range of an angle begins: most files keep to ±180, some to 0 to 360.
-fn usual_low(angles: &FileAngles, channel: usize) -> f64 {
-    let count_in = |low: f64| {
-        let inside = |triple: &&[f64; 3]| (low..=low + 360.0).contains(&triple[channel]);
-        angles.degrees.iter().filter(inside).count()
-    };
-    if count_in(0.0) > count_in(-180.0) { 0.0 } else { -180.0 }
+fn usual_low(degrees: &[[f64; 3]], channel: usize) -> f64 {
+    let (mut around, mut above) = (0usize, 0usize);
+    for triple in degrees {
+        let angle = triple[channel];
+        around += usize::from((-180.0..=180.0).contains(&angle));
+        above += usize::from((0.0..=360.0).contains(&angle));
+    }
+    if above > around { 0.0 } else { -180.0 }
 }
 
 fn is_wrap(scan: &Scan<'_>, angles: &FileAngles, key: usize, channel: usize) -> bool {
@@ -169,7 +175,7 @@ fn turn_into(scan: &Scan<'_>, key: usize) -> Option<f64> {
 
 /// The median turn into the keys around, the own left out, in degrees.
 fn usual_step(scan: &Scan<'_>, key: usize) -> f64 {
-    let last = scan.track.keys.len() - 1;
+    let last = scan.keys.len() - 1;
     let near = key.saturating_sub(NEAR_KEYS).max(1)..=(key + NEAR_KEYS).min(last);
     let mut turns: Vec<f64> =
         near.filter(|&other| other != key).filter_map(|key| turn_into(scan, key)).collect();

@@ -2,6 +2,9 @@
 
 use crate::rotor::{Bivector, Rotor, slerp};
 
+use super::poses::Poses;
+use super::scan::Scan;
+
 /// Steps to each side of a border that tell how the joint moves there.
 const NEAR: usize = 4;
 
@@ -15,6 +18,10 @@ pub(super) enum Side {
     Bone,
     /// `q = offset · truth`
     Parent,
+}
+
+impl Side {
+    pub(super) const BOTH: [Self; 2] = [Self::Bone, Self::Parent];
 }
 
 /// An offset and how sure it is.
@@ -34,45 +41,74 @@ impl Side {
     }
 }
 
-/// The offset of `poses[key..]` against the keys before: `poses[key - 1]` is sound, `poses[key]` off, each side alike as
-/// far as `from..to` reaches. With `leaving` it is the other way round, and the offset is that of `poses[key - 1]`.
-pub(super) fn offset_at(
-    poses: &[Rotor],
+/// The offset of the poses from `key` on against those before: the pose before `key` is sound, that at `key` off, each side
+/// alike as far as `from..to` reaches. With `leaving` it is the other way round, and the offset is that of the pose before.
+/// On the bone side, and on the parent's.
+pub(super) fn offsets_at(
+    poses: &Poses<'_>,
     key: usize,
     (from, to): (usize, usize),
-    side: Side,
     leaving: bool,
-) -> Offset {
-    let (a, b) = (poses[key - 1], poses[key]);
-    let mut offset = if leaving { side.offset(b, a) } else { side.offset(a, b) };
-    let mut sigma_rad = 0.0;
-    for _ in 0..3 {
-        let step = |last: usize| {
-            let own = (poses[last - 1].reverse() * poses[last]).plane_angles();
-            // The rates of the side that is off are turned with it.
-            let is_off = (last > key) != leaving;
-            if is_off && side == Side::Bone { turned(offset, own) } else { own }
-        };
-        let (expected, sigma) = expected_step(step, key, from, to);
+) -> [Offset; 2] {
+    let (a, b) = (poses.at(key - 1), poses.at(key));
+    let steps = Steps::new(poses, key, from, to);
+    let after = |side: Side, expected: Bivector| {
         let forward = Rotor::from_plane_angles(expected);
-        offset = if leaving { side.offset(b * forward.reverse(), a) } else { side.offset(a * forward, b) };
-        sigma_rad = sigma;
+        if leaving { side.offset(b * forward.reverse(), a) } else { side.offset(a * forward, b) }
+    };
+    let on_bone_side = {
+        let side = Side::Bone;
+        let turn = if leaving { side.offset(b, a) } else { side.offset(a, b) };
+        let mut found = Offset { turn, sigma_rad: 0.0 };
+        // The rates of the side that is off are turned with it, by an offset that gets better each time.
+        for _ in 0..3 {
+            let step = |last: usize| {
+                let own = steps.step_into(last);
+                if (last > key) == leaving { own } else { turned(found.turn, own) }
+            };
+            let (expected, sigma_rad) = expected_step(step, key, from, to);
+            found = Offset { turn: after(side, expected), sigma_rad };
+        }
+        found
+    };
+    let (expected, sigma_rad) = expected_step(|last| steps.step_into(last), key, from, to);
+    [on_bone_side, Offset { turn: after(Side::Parent, expected), sigma_rad }]
+}
+
+/// The steps near a border, as plane angles.
+struct Steps {
+    low: usize,
+    each: Vec<Bivector>,
+}
+
+impl Steps {
+    /// All that [`expected_step`] asks for.
+    fn new(poses: &Poses<'_>, key: usize, from: usize, to: usize) -> Self {
+        let low = key.saturating_sub(TRIED).max(from + 1).min(key);
+        let high = (key + TRIED).min(to).max(key);
+        let step = |last: usize| (poses.at(last - 1).reverse() * poses.at(last)).plane_angles();
+        Self { low, each: (low..=high).map(step).collect() }
     }
-    Offset { turn: offset, sigma_rad }
+
+    /// The step from the key before into `key`.
+    fn step_into(&self, key: usize) -> Bivector {
+        self.each[key - self.low]
+    }
 }
 
 /// The offset of a key in a run of few keys against the way across it.
 pub(super) fn offset_in_few(
-    poses: &[Rotor],
-    secs: &[f64],
+    scan: &Scan<'_>,
+    poses: &Poses<'_>,
     (first, last): (usize, usize),
     key: usize,
     side: Side,
 ) -> Offset {
-    let (a, b) = (poses[first - 1], poses[last + 1]);
-    let share = (secs[key] - secs[first - 1]) / (secs[last + 1] - secs[first - 1]);
+    let (a, b) = (poses.at(first - 1), poses.at(last + 1));
+    let start = scan.secs(first - 1);
+    let share = (scan.secs(key) - start) / (scan.secs(last + 1) - start);
     // The way across may bend by about a tenth of its length.
-    Offset { turn: side.offset(slerp(a, b, share), poses[key]), sigma_rad: a.turn_to(b) * 0.1 }
+    Offset { turn: side.offset(slerp(a, b, share), poses.at(key)), sigma_rad: a.turn_to(b) * 0.1 }
 }
 
 /// The mean of two offsets, each counted by its certainty.
@@ -116,14 +152,15 @@ fn expected_step(step: impl Fn(usize) -> Bivector, key: usize, from: usize, to: 
         let mut misses: Vec<f64> = (low + reach..=high - reach)
             // Trials must not see the step in question.
             .filter(|&k| k.abs_diff(key) > reach)
-            .map(|k| (guess(weights, k) - at(k)).length())
+            .map(|k| guess(weights, k) - at(k))
+            .map(|miss| miss.dot(miss))
             .collect();
         if misses.len() < 3 {
             continue;
         }
-        misses.sort_by(f64::total_cmp);
+        let middle = misses.len() / 2;
         // The median length of a normal miss in three dimensions is 1.538 of its deviation along each.
-        let sigma = misses[misses.len() / 2] * (1.732 / 1.538);
+        let sigma = misses.select_nth_unstable_by(middle, f64::total_cmp).1.sqrt() * (1.732 / 1.538);
         if sigma < best.1 {
             best = (guess(weights, key), sigma);
         }

@@ -11,115 +11,163 @@ const SWITCH_COST: f64 = 225.0;
 /// Through a step in which the joint itself turns by more than this, in radians, no branch can be followed.
 const FOLLOWED_RAD: f64 = 1.0;
 
+/// No angle of a key steps by more than this, in degrees, unless the step is worth a look: three such squares together are less
+/// than [`SWITCH_COST`], so that no other branch can be cheaper, and no angle comes near half a turn.
+const CALM_DEG: f64 = 8.66;
+
+/// Keys that are looked over together.
+const BLOCK: usize = 64;
+
+/// The keys whose angles step from the key before by more than the calmest motion does; those that are not finite and those
+/// after them are among these. Most keys of most joints are not.
+pub(super) fn wide_steps(degrees: &[[f64; 3]]) -> Vec<usize> {
+    let mut wide = Vec::new();
+    let is_calm = |from: f64, to: f64| (to - from).abs() <= CALM_DEG;
+    if degrees.first().is_some_and(|triple| !is_finite(triple)) {
+        wide.push(0);
+    }
+    for start in (1..degrees.len()).step_by(BLOCK) {
+        let end = (start + BLOCK).min(degrees.len());
+        let (before, own) = (degrees[start - 1..end - 1].as_flattened(), degrees[start..end].as_flattened());
+        let mut calm = true;
+        for (from, to) in before.iter().zip(own) {
+            calm &= is_calm(*from, *to);
+        }
+        if !calm {
+            let is_wide = |key: &usize| (0..3).any(|i| !is_calm(degrees[key - 1][i], degrees[*key][i]));
+            wide.extend((start..end).filter(is_wide));
+        }
+    }
+    wide
+}
+
+pub(super) fn is_finite(triple: &[f64; 3]) -> bool {
+    triple.iter().all(|angle| angle.is_finite())
+}
+
+/// Keys over which the row of equal triples goes as the file's own does, but for whole turns.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) struct Stretch {
+    /// Up to the key before the next stretch.
+    pub(super) first: usize,
+    /// Whether the file's triples are the mirrored ones against the row.
+    pub(super) is_mirrored: bool,
+    /// Whole turns by which the row is off the triples.
+    pub(super) turns: [f64; 3],
+}
+
 /// The row of equal triples that changes least.
 #[derive(Clone, Debug)]
 pub(super) struct Branches {
+    /// In order; the first begins at key 0.
+    stretches: Vec<Stretch>,
+}
+
+impl Branches {
+    /// Each stretch with the key after its last, of `count` keys.
+    pub(super) fn stretches(&self, count: usize) -> impl Iterator<Item = (Stretch, usize)> + '_ {
+        let ends = self.stretches.iter().skip(1).map(|next| next.first).chain([count]);
+        self.stretches.iter().copied().zip(ends)
+    }
+
+    /// The runs of keys, first and last, whose triples are the mirrored ones against the row.
+    pub(super) fn mirrored_runs(&self, count: usize) -> Vec<(usize, usize)> {
+        let mut runs: Vec<(usize, usize)> = Vec::new();
+        for (stretch, end) in self.stretches(count).filter(|(stretch, _)| stretch.is_mirrored) {
+            match runs.last_mut() {
+                Some((_, last)) if *last + 1 == stretch.first => *last = end - 1,
+                _ => runs.push((stretch.first, end - 1)),
+            }
+        }
+        runs
+    }
+
     /// Whether a key's triple is the mirrored one against the row.
-    pub(super) mirrored: Vec<bool>,
-    /// The triples of the row, in degrees; none where the file's is not finite.
-    pub(super) row: Vec<Option<[f64; 3]>>,
+    pub(super) fn is_mirrored(&self, key: usize) -> bool {
+        self.stretch(key).is_mirrored
+    }
+
+    /// The triple of the row at a key, in degrees; `None` where the file's is not finite.
+    pub(super) fn row(&self, angles: &FileAngles, key: usize) -> Option<[f64; 3]> {
+        let triple = angles.degrees[key];
+        is_finite(&triple).then(|| self.stretch(key).row(angles, triple))
+    }
+
+    fn stretch(&self, key: usize) -> Stretch {
+        let index = self.stretches.partition_point(|stretch| stretch.first <= key);
+        self.stretches[index.saturating_sub(1)]
+    }
+}
+
+impl Stretch {
+    fn row(&self, angles: &FileAngles, triple: [f64; 3]) -> [f64; 3] {
+        let own = if self.is_mirrored { mirrored(angles, triple) } else { triple };
+        std::array::from_fn(|i| own[i] + 360.0 * self.turns[i])
+    }
 }
 
 /// Follows the angles with the two equal triples of each key, and gives the cheapest row by the sum of squared changes;
-/// whole turns are free. Not greedy: the choice at a pole is made by what follows too (methods after Viterbi 1967).
-/// The first key keeps its own branch, unless the triples that keep theirs lie outside the usual range of the middle
-/// angle and the others inside.
-pub(super) fn follow(scan: &Scan<'_>, angles: &FileAngles) -> Branches {
-    let count = angles.degrees.len();
+/// whole turns are free. A row and its mirror image cost the same, so a change of branch is worth while just where it makes
+/// its own step cheaper. The first key keeps its own branch, unless the triples that keep theirs lie outside the usual range
+/// of the middle angle and the others inside. `wide` are the keys where anything can happen ([`wide_steps`]).
+pub(super) fn follow(scan: &Scan<'_>, angles: &FileAngles, wide: &[usize]) -> Branches {
+    let degrees: &[[f64; 3]] = &angles.degrees;
     let has_mirror = angles.axes.len() == 3;
-    let mut costs = [0.0, if has_mirror { 0.0 } else { f64::INFINITY }];
-    // For each key and branch, whether the best way into it comes from the other branch.
-    let mut from_other: Vec<[bool; 2]> = Vec::with_capacity(count);
-    let mut before: Option<[[f64; 3]; 2]> = None;
-    let mut last_key = 0;
-    for (key, triple) in angles.degrees.iter().enumerate() {
-        if !triple.iter().all(|angle| angle.is_finite()) {
-            from_other.push([false; 2]);
-            continue;
-        }
-        let own = [*triple, mirrored(angles, *triple)];
-        let Some(near) = before.replace(own) else {
-            last_key = key;
-            from_other.push([false; 2]);
-            continue;
-        };
-        let change = |a: usize, b: usize| (0..3).map(|i| short(own[b][i] - near[a][i]).powi(2)).sum::<f64>();
-        // Both triples mirrored change by the same, so two of the four sums serve.
-        let near_key = std::mem::replace(&mut last_key, key);
-        let stay = change(0, 0);
-        let mut switch = if has_mirror { change(1, 0) + SWITCH_COST } else { f64::INFINITY };
-        // The turn is dear to compute and seldom asked for.
-        if (0..2).any(|branch| costs[1 - branch] + switch < costs[branch] + stay) {
-            let turn = scan.unit(near_key).zip(scan.unit(key)).map_or(0.0, |(a, b)| a.turn_to(b));
-            if turn > FOLLOWED_RAD {
-                switch = f64::INFINITY;
-            }
-        }
-        let mut taken = [false; 2];
-        let mut next = [0.0; 2];
-        for branch in 0..2 {
-            let (kept, crossed) = (costs[branch] + stay, costs[1 - branch] + switch);
-            taken[branch] = crossed < kept;
-            next[branch] = kept.min(crossed);
-        }
-        costs = next;
-        from_other.push(taken);
-    }
+    // Finite keys with a wide step, and the finite key before.
+    let steps: Vec<(usize, usize)> = wide
+        .iter()
+        .filter(|&&key| is_finite(&degrees[key]))
+        .filter_map(|&key| Some((key, (0..key).rev().find(|&near| is_finite(&degrees[near]))?)))
+        .collect();
+    let switches: Vec<usize> = steps
+        .iter()
+        .filter(|&&(key, near)| has_mirror && switches(scan, angles, near, key))
+        .map(|&(key, _)| key)
+        .collect();
+    let starts_mirrored = !switches.is_empty() && is_other_side_usual(angles, &switches);
 
-    let mut branch = usize::from(costs[1] < costs[0]);
-    let mut mirrored_keys = vec![false; count];
-    for key in (0..count).rev() {
-        mirrored_keys[key] = branch == 1;
-        if from_other[key][branch] {
-            branch = 1 - branch;
+    let mut stretches = vec![Stretch { first: 0, is_mirrored: starts_mirrored, turns: [0.0; 3] }];
+    for (key, near) in steps {
+        let last = stretches[stretches.len() - 1];
+        let is_mirrored = last.is_mirrored != switches.binary_search(&key).is_ok();
+        let before = last.row(angles, degrees[near]);
+        let own = if is_mirrored { mirrored(angles, degrees[key]) } else { degrees[key] };
+        let turns = std::array::from_fn(|i| -((own[i] - before[i]) / 360.0).round() + 0.0);
+        let stretch = Stretch { first: key, is_mirrored, turns };
+        if stretch != (Stretch { first: key, ..last }) {
+            stretches.push(stretch);
         }
     }
-    settle_side(angles, &mut mirrored_keys);
-    let row = row(angles, &mirrored_keys);
-    Branches { mirrored: mirrored_keys, row }
+    Branches { stretches }
 }
 
-/// Of the two rows that mirror each other, takes the one that keeps the first key, or the usual range.
-fn settle_side(angles: &FileAngles, mirrored: &mut [bool]) {
-    if mirrored.first() == Some(&true) {
-        for own in mirrored.iter_mut() {
-            *own = !*own;
-        }
-    }
-    let usual = |key: usize| {
-        let middle = angles.degrees[key][1];
+/// Whether the row goes from the one to the other triple with the step from key `near` into `key`.
+fn switches(scan: &Scan<'_>, angles: &FileAngles, near: usize, key: usize) -> bool {
+    let (before, own) = (angles.degrees[near], angles.degrees[key]);
+    let change = |from: [f64; 3], to: [f64; 3]| (0..3).map(|i| short(to[i] - from[i]).powi(2)).sum::<f64>();
+    let is_cheaper = change(mirrored(angles, before), own) + SWITCH_COST < change(before, own);
+    // The turn is dear to compute and seldom asked for.
+    is_cheaper && scan.unit(near).zip(scan.unit(key)).map_or(0.0, |(a, b)| a.turn_to(b)) <= FOLLOWED_RAD
+}
+
+/// Of the two rows that mirror each other, whether the one that does not keep the first key is in the usual range.
+fn is_other_side_usual(angles: &FileAngles, switches: &[usize]) -> bool {
+    let usual = |middle: f64| {
         if angles.order.is_proper() { (-1e-3..=180.001).contains(&middle) } else { middle.abs() <= 90.001 }
     };
     // How many keys of each side lie in the usual range, and how many in all.
     let mut sides = [[0usize; 2]; 2];
-    for (key, &side) in mirrored.iter().enumerate() {
-        sides[usize::from(side)][0] += usize::from(usual(key));
-        sides[usize::from(side)][1] += 1;
+    let mut side = 0;
+    let mut switches = switches.iter().peekable();
+    for (key, triple) in angles.degrees.iter().enumerate() {
+        if switches.next_if(|&&switch| switch == key).is_some() {
+            side = 1 - side;
+        }
+        sides[side][0] += usize::from(usual(triple[1]));
+        sides[side][1] += 1;
     }
     let [kept, other] = sides;
-    if other[1] > 0 && kept[0] * 2 < kept[1] && other[0] * 2 > other[1] {
-        for own in mirrored.iter_mut() {
-            *own = !*own;
-        }
-    }
-}
-
-fn row(angles: &FileAngles, mirrored_keys: &[bool]) -> Vec<Option<[f64; 3]>> {
-    let mut before: Option<[f64; 3]> = None;
-    angles
-        .degrees
-        .iter()
-        .zip(mirrored_keys)
-        .map(|(&triple, &is_mirrored)| {
-            if !triple.iter().all(|angle| angle.is_finite()) {
-                return None;
-            }
-            let own = if is_mirrored { mirrored(angles, triple) } else { triple };
-            let near = before.unwrap_or(own);
-            before = Some(std::array::from_fn(|i| own[i] - 360.0 * ((own[i] - near[i]) / 360.0).round()));
-            before
-        })
-        .collect()
+    other[1] > 0 && kept[0] * 2 < kept[1] && other[0] * 2 > other[1]
 }
 
 /// The other triple of the same turn, in degrees.

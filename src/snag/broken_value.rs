@@ -1,10 +1,11 @@
 //! Stored values that are no rotation: not finite, zero, or off unit length.
 
-use crate::clip::{Clip, PathKind, Stored};
+use crate::clip::{PathKind, Stored};
 use crate::rotor::slerp;
 
-use super::scan::{Finding, Scan, runs};
-use super::{Remedy, Snag, SnagKind};
+use super::branches::is_finite;
+use super::scan::{Finding, Scan, View, runs, runs_of};
+use super::{Memory, Remedy, Snag, SnagKind};
 
 /// Lengths further from 1 than this are off.
 const NORM_TOLERANCE: f64 = 1e-3;
@@ -22,15 +23,26 @@ enum Fault {
 }
 
 /// Finds broken values of one joint.
-pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
-    let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
-    runs((0..scan.track.keys.len()).map(|key| fault(&scan, key)))
+pub(super) fn find(view: View<'_>, joint: usize, memory: &mut Memory) -> Vec<Snag> {
+    let Some(scan) = Scan::new(view, joint) else { return Vec::new() };
+    let faults: Vec<(usize, usize, Fault)> = match &scan.track.stored {
+        Stored::Angles(angles) => {
+            // What is not finite is no calm step.
+            let broken = |key: &&usize| !is_finite(&angles.degrees[**key]);
+            runs_of(memory.wide(angles).iter().filter(broken).map(|&key| (key, Fault::NoRotation)))
+        }
+        Stored::PlaneAngles(degrees) => {
+            runs(degrees.iter().map(|triple| (!is_finite(triple)).then_some(Fault::NoRotation)))
+        }
+        Stored::Rotors => runs((0..scan.keys.len()).map(|key| fault(&scan, key))),
+    };
+    faults
         .into_iter()
         .map(|(first, last, fault)| {
             let (name, span) = (scan.label(), scan.span(first, last));
             let (remedy, text) = match fault {
                 Fault::OffUnit => {
-                    let off = |key: usize| (scan.track.keys[key].norm() - 1.0).abs();
+                    let off = |key: usize| (scan.keys[key].norm() - 1.0).abs();
                     let worst = (first..=last).map(off).fold(0.0, f64::max);
                     (Remedy::Normalise, format!("{name} is off unit length by up to {worst:.4} {span}"))
                 }
@@ -49,36 +61,29 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
         .collect()
 }
 
+/// What is wrong with a stored rotor.
 fn fault(scan: &Scan<'_>, key: usize) -> Option<Fault> {
-    let rotor = scan.track.keys[key];
-    let finite = |triple: &[f64; 3]| triple.iter().all(|angle| angle.is_finite());
-    match &scan.track.stored {
-        Stored::Angles(angles) => (!finite(&angles.degrees[key])).then_some(Fault::NoRotation),
-        Stored::PlaneAngles(degrees) => (!finite(&degrees[key])).then_some(Fault::NoRotation),
-        Stored::Rotors => {
-            let norm = rotor.norm();
-            let is_cubic = |segment: usize| scan.track.paths.of(segment) == PathKind::Cubic;
-            let tangents_used = is_cubic(key) || (key > 0 && is_cubic(key - 1));
-            let tangents_finite = scan.track.tangents.as_ref().is_none_or(|tangents| {
-                !tangents_used || tangents[key].iter().all(|tangent| tangent.is_finite())
-            });
-            if !tangents_finite {
-                Some(Fault::NoRotation)
-            } else if (norm - 1.0).abs() <= NORM_TOLERANCE {
-                None
-            } else if SOUND_LENGTHS.contains(&norm) || points_along(scan, key) {
-                Some(Fault::OffUnit)
-            } else {
-                Some(Fault::NoRotation)
-            }
-        }
+    let norm = scan.keys[key].norm();
+    let is_cubic = |segment: usize| scan.track.paths.of(segment) == PathKind::Cubic;
+    let tangents_finite = scan.track.tangents.as_ref().is_none_or(|tangents| {
+        let are_used = is_cubic(key) || (key > 0 && is_cubic(key - 1));
+        !are_used || tangents[key].iter().all(|tangent| tangent.is_finite())
+    });
+    if !tangents_finite {
+        Some(Fault::NoRotation)
+    } else if (norm - 1.0).abs() <= NORM_TOLERANCE {
+        None
+    } else if SOUND_LENGTHS.contains(&norm) || points_along(scan, key) {
+        Some(Fault::OffUnit)
+    } else {
+        Some(Fault::NoRotation)
     }
 }
 
 /// Whether a key of quite another length still lies on the way between its neighbours.
 fn points_along(scan: &Scan<'_>, key: usize) -> bool {
     let neighbour =
-        |key: Option<usize>| key.filter(|&key| key < scan.track.keys.len()).and_then(|key| scan.unit(key));
+        |key: Option<usize>| key.filter(|&key| key < scan.keys.len()).and_then(|key| scan.unit(key));
     let (before, after) = (neighbour(key.checked_sub(1)), neighbour(Some(key + 1)));
     match (before, scan.unit(key), after) {
         (Some(before), Some(own), Some(after)) => {

@@ -6,8 +6,8 @@ use crate::clip::Clip;
 use crate::limit::{Limits, adult};
 
 use super::{
-    Memory, Snag, SnagKind, broken_value, half_turn, jitter, long_way, mirrored_angles, seam, sign_flip,
-    slide, spike, stuck, wrap,
+    Memory, Outlines, Snag, SnagKind, View, broken_value, half_turn, jitter, long_way, mirrored_angles, seam,
+    sign_flip, slide, spike, stuck, wrap,
 };
 
 /// Finds the snags of one kind in one joint of `clip` as it is, in the order of their keys.
@@ -15,24 +15,26 @@ use super::{
 /// The kinds build on one another: each expects that the kinds before it in [`SnagKind::ALL`] are mended. Carriers and
 /// joints without keys have none. [`SnagKind::PastLimit`] needs limits: [`find_past_limit`](super::find_past_limit).
 pub fn find(clip: &Clip, joint: usize, kind: SnagKind) -> Vec<Snag> {
-    find_with(clip, joint, kind, &mut Memory::default())
+    let outlines = Outlines::new(clip.joints.len());
+    find_with(View { clip, outlines: &outlines }, joint, kind, &mut Memory::default())
 }
 
-/// As [`find`], with what the earlier kinds have worked out about the same joint.
-pub fn find_with(clip: &Clip, joint: usize, kind: SnagKind, memory: &mut Memory) -> Vec<Snag> {
+/// As [`find`], with what the earlier kinds have worked out about the clip and the same joint.
+pub fn find_with(view: View<'_>, joint: usize, kind: SnagKind, memory: &mut Memory) -> Vec<Snag> {
+    let clip = view.clip;
     let mut snags = match kind {
-        SnagKind::BrokenValue => broken_value::find(clip, joint),
-        SnagKind::SignFlip => sign_flip::find(clip, joint),
-        SnagKind::Wrap => wrap::find(clip, joint, memory),
-        SnagKind::MirroredAngles => mirrored_angles::find(clip, joint, memory),
-        SnagKind::LongWay => long_way::find(clip, joint, memory),
+        SnagKind::BrokenValue => broken_value::find(view, joint, memory),
+        SnagKind::SignFlip => sign_flip::find(view, joint),
+        SnagKind::Wrap => wrap::find(view, joint, memory),
+        SnagKind::MirroredAngles => mirrored_angles::find(view, joint, memory),
+        SnagKind::LongWay => long_way::find(view, joint, memory),
         SnagKind::HalfTurn => {
             let adult = OnceCell::new();
-            half_turn::find_half_turns(clip, joint, &|| adult.get_or_init(|| preset_limits(clip)).as_ref())
+            half_turn::find_half_turns(view, joint, &|| adult.get_or_init(|| preset_limits(clip)).as_ref())
         }
-        SnagKind::Spike => spike::find(clip, joint),
-        SnagKind::Stuck => stuck::find(clip, joint),
-        SnagKind::Jitter => jitter::find(clip, joint),
+        SnagKind::Spike => spike::find(view, joint),
+        SnagKind::Stuck => stuck::find(view, joint),
+        SnagKind::Jitter => jitter::find(view, joint),
         // Only against limits: see `find_past_limit`.
         SnagKind::PastLimit => Vec::new(),
         SnagKind::Seam | SnagKind::Slide => {
@@ -55,7 +57,12 @@ pub fn find_in_clip(clip: &Clip, kind: SnagKind) -> Vec<Snag> {
     let mut snags = match kind {
         SnagKind::Seam => seam::find_all(clip),
         SnagKind::Slide => slide::find_all(clip),
-        _ => (0..clip.joints.len()).flat_map(|joint| find(clip, joint, kind)).collect(),
+        _ => {
+            let outlines = Outlines::new(clip.joints.len());
+            let view = View { clip, outlines: &outlines };
+            let joints = 0..clip.joints.len();
+            joints.flat_map(|joint| find_with(view, joint, kind, &mut Memory::default())).collect()
+        }
     };
     snags.sort_by_key(|snag| (snag.joint, snag.first_key, snag.last_key));
     snags

@@ -2,17 +2,20 @@
 
 mod sides;
 
+use std::cell::RefCell;
+use std::collections::{BTreeMap, BTreeSet};
 use std::f64::consts::PI;
 
 use glam::DVec3;
 
-use crate::clip::{Clip, PathKind};
+use crate::clip::PathKind;
 use crate::limit::Limits;
 use crate::rotor::{Bivector, Rotor};
 
-use super::border::{Offset, Side, joined, offset_at, offset_in_few};
+use super::border::{Offset, Side, joined, offset_in_few, offsets_at};
+use super::poses::Poses;
 use super::roughness::angle_of_dot;
-use super::scan::{Finding, Scan};
+use super::scan::{Finding, Scan, View};
 use super::{Remedy, Snag, SnagKind};
 use sides::{Evidence, Sides};
 
@@ -21,6 +24,9 @@ const LEAST_KEYS: usize = 8;
 
 /// A step from key to key of at least this is looked at.
 const STEP_RAD: f64 = 100.0 / 180.0 * PI;
+
+/// A dot product of neighbouring unit rotors of at least this is none: they turn by 51.7° at most.
+pub(super) const LEAST_DOT: f64 = 0.9;
 
 /// A smaller one is, when a joint above or below makes a step of [`STEP_RAD`] at the same time.
 const LINKED_STEP_RAD: f64 = 60.0 / 180.0 * PI;
@@ -70,26 +76,28 @@ const CONTRARY_EVIDENCE: f64 = -0.15;
 /// Finds half-turns of one joint of `clip`. Of the two sides of a jump the wrong one is told by the whole clip: by the motion at
 /// both ends of a run, how long it is, what the joints above do, by `limits` where the joint has one there, by the joint on the other
 /// side of the body, and by where the limb and its child point. `limits` is asked for only where the joint jumps.
-pub fn find_half_turns<'a>(clip: &Clip, joint: usize, limits: &dyn Fn() -> Option<&'a Limits>) -> Vec<Snag> {
-    let mut snags = find(clip, joint, limits);
+pub fn find_half_turns<'a>(
+    view: View<'_>,
+    joint: usize,
+    limits: &dyn Fn() -> Option<&'a Limits>,
+) -> Vec<Snag> {
+    let mut snags = find(view, joint, limits);
     snags.sort_by_key(|snag| (snag.first_key, snag.last_key));
     snags
 }
 
-fn find<'a>(clip: &Clip, joint: usize, limits: &dyn Fn() -> Option<&'a Limits>) -> Vec<Snag> {
-    let Some(scan) = Scan::new(clip, joint).filter(|scan| scan.track.keys.len() >= LEAST_KEYS) else {
+fn find<'a>(view: View<'_>, joint: usize, limits: &dyn Fn() -> Option<&'a Limits>) -> Vec<Snag> {
+    let Some(scan) = Scan::new(view, joint).filter(|scan| scan.keys.len() >= LEAST_KEYS) else {
         return Vec::new();
     };
     let jumps = jumps(&scan);
     if jumps.is_empty() {
         return Vec::new();
     }
-    let poses = poses(&scan);
-    let secs: Vec<f64> = scan.track.times.iter().collect();
     let limits = limits();
     let above = runs_above(&scan, &jumps, limits);
     let sides = Sides::new(scan, &jumps, limits, !above.is_empty());
-    let motion = Motion { scan, poses, secs, jumps, above, sides };
+    let motion = Motion::new(scan, jumps, above, sides);
     let runs = motion.runs();
     let lone = motion.lone_jumps(&runs);
     runs.into_iter().filter_map(|run| motion.snag(run)).chain(lone).collect()
@@ -101,31 +109,18 @@ fn runs_above(scan: &Scan<'_>, own: &[usize], limits: Option<&Limits>) -> Vec<Ru
     let skeleton = &scan.clip.skeleton;
     let above =
         std::iter::successors(skeleton.parent_joint(scan.joint), |&up| skeleton.parent_joint(up)).take(2);
-    for other in above.filter_map(|joint| Scan::new(scan.clip, joint)) {
+    for other in above.filter_map(|joint| scan.other(joint)) {
         if other.track.times != scan.track.times {
             continue;
         }
         let jumps = jumps(&other);
         let shared = own.iter().filter(|jump| jumps.binary_search(jump).is_ok()).count();
         if shared * 2 > own.len() {
-            let poses = poses(&other);
-            let secs = other.track.times.iter().collect();
             let sides = Sides::new(other, &jumps, limits, false);
-            return Motion { scan: other, poses, secs, jumps, above: Vec::new(), sides }.runs();
+            return Motion::new(other, jumps, Vec::new(), sides).runs();
         }
     }
     Vec::new()
-}
-
-/// Unit poses of all keys; where the file has none, the one before.
-fn poses(scan: &Scan<'_>) -> Vec<Rotor> {
-    let mut before = scan.track.sound_key(0);
-    (0..scan.track.keys.len())
-        .map(|key| {
-            before = scan.unit(key).unwrap_or(before).aligned_to(before);
-            before
-        })
-        .collect()
 }
 
 fn step(scan: &Scan<'_>, key: usize) -> f64 {
@@ -137,12 +132,13 @@ fn step(scan: &Scan<'_>, key: usize) -> f64 {
 
 /// Keys into which the joint jumps.
 fn jumps(scan: &Scan<'_>) -> Vec<usize> {
-    let count = scan.track.keys.len();
-    let wide: Vec<usize> = (1..count)
+    let wide: Vec<usize> = scan
+        .outline()
+        .stepping()
         .filter(|&key| {
             // Unit or not, a small dot product is a wide step; the exact angle comes after.
-            let (a, b) = (scan.track.keys[key - 1], scan.track.keys[key]);
-            a.dot(b).abs() < 0.9
+            key > 0
+                && scan.keys[key - 1].dot(scan.keys[key]).abs() < LEAST_DOT
                 && step(scan, key) >= LINKED_STEP_RAD
                 && scan.track.paths.of(key - 1) != PathKind::Hold
         })
@@ -158,7 +154,7 @@ fn jumps(scan: &Scan<'_>) -> Vec<usize> {
 
 /// Whether the step is far above what is usual near by.
 fn is_sudden(scan: &Scan<'_>, wide: &[usize], key: usize, own: f64) -> bool {
-    let count = scan.track.keys.len();
+    let count = scan.keys.len();
     let is_jump = |key: usize| wide.binary_search(&key).is_ok();
     let mut near: Vec<f64> = (key.saturating_sub(NEAR_KEYS).max(1)..(key + NEAR_KEYS + 1).min(count))
         .filter(|&other| other != key)
@@ -183,7 +179,7 @@ fn is_linked(scan: &Scan<'_>, key: usize) -> bool {
     let below = skeleton.children(scan.joint).iter().copied();
     let below = below.clone().chain(below.flat_map(|child| skeleton.children(child).iter().copied()));
     above.chain(below).any(|other| {
-        Scan::new(scan.clip, other).is_some_and(|other| {
+        scan.other(other).is_some_and(|other| {
             let near = other.track.times.nearest(scan.secs(key));
             near > 0 && step(&other, near) >= STEP_RAD
         })
@@ -193,7 +189,7 @@ fn is_linked(scan: &Scan<'_>, key: usize) -> bool {
 /// How many joints of all make a wide step at this time: a cut moves them all.
 fn is_cut(scan: &Scan<'_>, key: usize) -> bool {
     let (mut listed, mut wide) = (0, 0);
-    for other in scan.clip.skeleton.listed().filter_map(|joint| Scan::new(scan.clip, joint)) {
+    for other in scan.clip.skeleton.listed().filter_map(|joint| scan.other(joint)) {
         let near = other.track.times.nearest(scan.secs(key));
         listed += 1;
         wide += usize::from(near > 0 && step(&other, near) >= LINKED_STEP_RAD / 2.0);
@@ -204,12 +200,21 @@ fn is_cut(scan: &Scan<'_>, key: usize) -> bool {
 /// A joint with jumps.
 struct Motion<'a> {
     scan: Scan<'a>,
-    poses: Vec<Rotor>,
-    secs: Vec<f64>,
+    poses: Poses<'a>,
     jumps: Vec<usize>,
-    /// Runs of a joint above that jumps along.
+    /// Runs of a joint above that jumps along, in order.
     above: Vec<Run>,
     sides: Sides<'a>,
+    /// What was worked out about a run; it is asked for more than once.
+    known: RefCell<BTreeMap<Run, Known>>,
+}
+
+/// What is known about a run.
+#[derive(Clone, Copy)]
+struct Known {
+    /// The offset at both ends, on the bone side and on the parent's.
+    ends: [[Option<Offset>; 2]; 2],
+    evidence: Option<Evidence>,
 }
 
 /// How far a run is off.
@@ -223,13 +228,26 @@ struct RunOffset {
 }
 
 /// A run of keys that are off: `first..=last`.
-#[derive(Clone, Copy, Debug, PartialEq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
 struct Run {
     first: usize,
     last: usize,
 }
 
-impl Motion<'_> {
+impl<'a> Motion<'a> {
+    fn new(scan: Scan<'a>, jumps: Vec<usize>, above: Vec<Run>, sides: Sides<'a>) -> Self {
+        Self { scan, poses: Poses::new(scan), jumps, above, sides, known: RefCell::default() }
+    }
+
+    /// Whether a joint above is off over the very same keys.
+    fn goes_along(&self, run: Run) -> bool {
+        self.above.binary_search(&run).is_ok()
+    }
+
+    fn known(&self, run: Run) -> Known {
+        *self.known.borrow_mut().entry(run).or_insert_with(|| Known { ends: self.ends(run), evidence: None })
+    }
+
     /// Which keys are off: each jump is a way in or out. Of the ways to pair them the one is taken whose ways in and out
     /// agree and that leaves the fewest keys off.
     fn runs(&self) -> Vec<Run> {
@@ -283,16 +301,17 @@ impl Motion<'_> {
             let speaks = self.evidence(run).sum().clamp(-MOST_EVIDENCE, MOST_EVIDENCE);
             share * (1.0 - WITNESS_COST * speaks)
         };
-        match self.ends(run, Side::Bone) {
+        let [bone, parent] = self.known(run).ends;
+        match bone {
             [Some(a), Some(b)] => {
-                let parent = match self.ends(run, Side::Parent) {
+                let parent = match parent {
                     [Some(a), Some(b)] => a.turn.turn_to(b.turn),
                     _ => PI,
                 };
                 let apart = a.turn.turn_to(b.turn).min(parent) / APART_RAD;
                 if self.above.is_empty() {
                     share() + apart
-                } else if self.above.contains(&run) {
+                } else if self.goes_along(run) {
                     0.3 * apart
                 } else {
                     1.0 + share() + apart
@@ -308,35 +327,39 @@ impl Motion<'_> {
         }
     }
 
-    /// The offset at both ends of a run, where it has them.
-    fn ends(&self, run: Run, side: Side) -> [Option<Offset>; 2] {
+    /// The offset at both ends of a run, where it has them: on the bone side, and on the parent's.
+    fn ends(&self, run: Run) -> [[Option<Offset>; 2]; 2] {
         let count = self.poses.len();
         let (before, after) = (self.sound_from(run.first), self.sound_to(run.last));
         if run.first > 0 && run.last + 1 < count && run.last - run.first < FEW {
             // Too few to have rates of their own: against the way across.
-            return [run.first, run.last]
-                .map(|key| Some(offset_in_few(&self.poses, &self.secs, (run.first, run.last), key, side)));
+            return Side::BOTH.map(|side| {
+                [run.first, run.last]
+                    .map(|key| Some(offset_in_few(&self.scan, &self.poses, (run.first, run.last), key, side)))
+            });
         }
-        let entering =
-            (run.first > 0).then(|| offset_at(&self.poses, run.first, (before, run.last), side, false));
-        let leaving = (run.last + 1 < count)
-            .then(|| offset_at(&self.poses, run.last + 1, (run.first, after), side, true));
-        [entering, leaving]
+        let entering = (run.first > 0).then(|| offsets_at(&self.poses, run.first, (before, run.last), false));
+        let leaving =
+            (run.last + 1 < count).then(|| offsets_at(&self.poses, run.last + 1, (run.first, after), true));
+        [0, 1].map(|side| [entering, leaving].map(|both| both.map(|both| both[side])))
     }
 
     /// First key from which the motion runs to `key` without a jump.
     fn sound_from(&self, key: usize) -> usize {
-        self.jumps.iter().rev().find(|&&jump| jump < key).copied().unwrap_or(0)
+        let behind = self.jumps.partition_point(|&jump| jump < key);
+        behind.checked_sub(1).map_or(0, |last| self.jumps[last])
     }
 
     /// Last key to which the motion runs from `key + 1` without a jump.
     fn sound_to(&self, key: usize) -> usize {
-        self.jumps.iter().find(|&&jump| jump > key + 1).map_or(self.poses.len() - 1, |jump| jump - 1)
+        let behind = self.jumps.partition_point(|&jump| jump <= key + 1);
+        self.jumps.get(behind).map_or(self.poses.len() - 1, |jump| jump - 1)
     }
 
     /// The offset of a run, on the side where it fits best.
     fn offset(&self, run: Run) -> Option<RunOffset> {
-        let both = [Side::Bone, Side::Parent].map(|side| (side, self.ends(run, side)));
+        let [bone, parent] = self.known(run).ends;
+        let both = [(Side::Bone, bone), (Side::Parent, parent)];
         let apart = |ends: &[Option<Offset>; 2]| match ends {
             [Some(a), Some(b)] => a.turn.turn_to(b.turn),
             _ => 0.0,
@@ -354,6 +377,17 @@ impl Motion<'_> {
 
     /// What speaks for a run's being the wrong side, besides how it is entered and left.
     fn evidence(&self, run: Run) -> Evidence {
+        if let Some(evidence) = self.known(run).evidence {
+            return evidence;
+        }
+        let evidence = self.asked(run);
+        if let Some(known) = self.known.borrow_mut().get_mut(&run) {
+            known.evidence = Some(evidence);
+        }
+        evidence
+    }
+
+    fn asked(&self, run: Run) -> Evidence {
         let Some(RunOffset { side, offset, .. }) = self.offset(run) else { return Evidence::default() };
         let back = offset.turn.reverse();
         self.sides.of((run.first, run.last), |pose| match side {
@@ -374,7 +408,7 @@ impl Motion<'_> {
         let speaks = evidence.sum();
         // One end proves less, and so does a run that goes along with a joint above, whose witnesses count.
         let is_witnessed = if is_inside {
-            speaks > CONTRARY_EVIDENCE || self.above.contains(&run)
+            speaks > CONTRARY_EVIDENCE || self.goes_along(run)
         } else {
             speaks >= CLEAR_EVIDENCE
         };
@@ -400,13 +434,14 @@ impl Motion<'_> {
     /// Jumps that belong to no run: which side of them is right, nothing shows. They are told and left to a person.
     fn lone_jumps(&self, runs: &[Run]) -> Vec<Snag> {
         let scan = &self.scan;
-        let is_end = |jump: usize| runs.iter().any(|run| run.first == jump || run.last + 1 == jump);
-        let is_told_above =
-            |jump: usize| self.above.iter().any(|run| run.first == jump || run.last + 1 == jump);
+        let ends_of = |runs: &[Run]| -> BTreeSet<usize> {
+            runs.iter().flat_map(|run| [run.first, run.last + 1]).collect()
+        };
+        let (ends, ends_above) = (ends_of(runs), ends_of(&self.above));
         self.jumps
             .iter()
             .copied()
-            .filter(|&jump| jump > CALIBRATION_KEYS && !is_end(jump) && !is_told_above(jump))
+            .filter(|&jump| jump > CALIBRATION_KEYS && !ends.contains(&jump) && !ends_above.contains(&jump))
             .filter(|&jump| step(scan, jump) >= STEP_RAD && !is_cut(scan, jump))
             .map(|jump| {
                 scan.snag(Finding {
@@ -430,7 +465,7 @@ impl Motion<'_> {
     /// Why this side of the jumps is taken for the wrong one, as far as the row of poses tells; `speaks` is what the witnesses say.
     fn why(&self, run: Run, speaks: f64) -> String {
         let (count, own) = (self.poses.len(), run.last + 1 - run.first);
-        if self.above.contains(&run) {
+        if self.goes_along(run) {
             return "it goes along with a joint above that flips at the same frames".to_owned();
         }
         match (run.first > 0, run.last + 1 < count) {

@@ -2,11 +2,11 @@
 
 use std::f64::consts::TAU;
 
-use crate::clip::{Clip, FileAngles, PathKind, Stored};
+use crate::clip::{FileAngles, PathKind, Stored};
 use crate::rotor::Bivector;
 
 use super::plane_turns::plane_runs;
-use super::scan::{Finding, Scan};
+use super::scan::{Finding, Scan, View};
 use super::{Memory, Remedy, Snag, SnagKind};
 
 /// Finds long ways of one joint.
@@ -14,10 +14,10 @@ use super::{Memory, Remedy, Snag, SnagKind};
 /// Where the file stores rotors: cubic segments between rotors of opposite sign, which a player turns the long way.
 /// Where it stores angles: steps over half a turn with which the joint really moves. Such a file is played the short way
 /// between frames, so nothing is to be mended unless the user knows what was meant. Turns that are marked as meant are none.
-pub(super) fn find(clip: &Clip, joint: usize, memory: &mut Memory) -> Vec<Snag> {
-    let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
+pub(super) fn find(view: View<'_>, joint: usize, memory: &mut Memory) -> Vec<Snag> {
+    let Some(scan) = Scan::new(view, joint) else { return Vec::new() };
     let snags: Vec<Snag> = match &scan.track.stored {
-        Stored::Rotors => (1..scan.track.keys.len()).filter_map(|key| cubic(&scan, key)).collect(),
+        Stored::Rotors => (1..scan.keys.len()).filter_map(|key| cubic(&scan, key)).collect(),
         Stored::Angles(angles) => of_angles(&scan, angles, memory),
         Stored::PlaneAngles(degrees) => of_plane_angles(&scan, degrees),
     };

@@ -1,9 +1,9 @@
 //! Angle triples that jump to the mirrored triple of the same turn.
 
-use crate::clip::{Clip, FileAngles, Stored};
+use crate::clip::{FileAngles, Stored};
 
 use super::branches::Branches;
-use super::scan::{Finding, Scan, runs};
+use super::scan::{Finding, Scan, View};
 use super::{Memory, Remedy, Snag, SnagKind};
 
 /// Near a pole two angles may run through large steps while the joint hardly turns; from here on that is told.
@@ -13,17 +13,18 @@ const POLE_STEP_DEG: f64 = 50.0;
 const POLE_TURN_DEG: f64 = 20.0;
 
 /// Finds mirrored triples of one joint.
-pub(super) fn find(clip: &Clip, joint: usize, memory: &mut Memory) -> Vec<Snag> {
-    let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
+pub(super) fn find(view: View<'_>, joint: usize, memory: &mut Memory) -> Vec<Snag> {
+    let Some(scan) = Scan::new(view, joint) else { return Vec::new() };
     let Stored::Angles(angles) = &scan.track.stored else { return Vec::new() };
     if angles.axes.len() < 3 {
         return Vec::new();
     }
+    let wide: Vec<usize> = memory.wide(angles).iter().copied().filter(|key| *key > 0).collect();
     let branches = memory.branches(&scan, angles);
-    let runs = runs(branches.mirrored.iter().map(|&mirrored| mirrored.then_some(())));
+    let runs = branches.mirrored_runs(angles.degrees.len());
     let mut snags: Vec<Snag> =
-        runs.into_iter().map(|(first, last, ())| mirrored(&scan, angles, first, last)).collect();
-    snags.extend((1..angles.degrees.len()).filter_map(|key| at_pole(&scan, angles, branches, key)));
+        runs.into_iter().map(|(first, last)| mirrored(&scan, angles, first, last)).collect();
+    snags.extend(wide.into_iter().filter_map(|key| at_pole(&scan, angles, branches, key)));
     snags
 }
 
@@ -50,14 +51,16 @@ fn mirrored(scan: &Scan<'_>, angles: &FileAngles, first: usize, last: usize) -> 
 
 /// A step through a pole that no choice among equal triples takes out.
 fn at_pole(scan: &Scan<'_>, angles: &FileAngles, branches: &Branches, key: usize) -> Option<Snag> {
-    if branches.mirrored[key] != branches.mirrored[key - 1] {
+    if branches.is_mirrored(key) != branches.is_mirrored(key - 1) {
         return None;
     }
-    let (before, after) = (branches.row[key - 1]?, branches.row[key]?);
+    let (before, after) = (branches.row(angles, key - 1)?, branches.row(angles, key)?);
     let step = |i: usize| (after[i] - before[i]).abs();
+    if step(0).min(step(2)) < POLE_STEP_DEG {
+        return None;
+    }
     let turn_deg = scan.unit(key - 1)?.turn_to(scan.unit(key)?).to_degrees();
-    let both = step(0).min(step(2));
-    if both < POLE_STEP_DEG || turn_deg > POLE_TURN_DEG {
+    if turn_deg > POLE_TURN_DEG {
         return None;
     }
     let [first, _, last] = [0, 1, 2].map(|i| angles.axes[i].letter());

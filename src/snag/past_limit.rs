@@ -1,13 +1,13 @@
 //! Runs of frames in which a joint is beyond its limit.
 
-use crate::clip::Clip;
+use crate::clip::{Clip, PathKind, Paths};
 use crate::limit::JointLimit;
 use crate::limit::Limits;
 use crate::limit::Reading;
-use crate::limit::readings;
+use crate::rotor::Rotor;
 
-use super::scan::{Finding, Scan};
-use super::{Remedy, Snag, SnagKind};
+use super::scan::{Finding, Scan, View};
+use super::{Outlines, Remedy, Snag, SnagKind};
 
 /// Nearer than this beyond the limit is what file formats round away, radians.
 const ROUNDING_RAD: f64 = 0.02 / 180.0 * std::f64::consts::PI;
@@ -26,45 +26,78 @@ const LEAST_CONFIDENCE: f64 = 0.5;
 ///
 /// Looks at the clip's frames, so that curves between keys are seen too.
 pub fn find_past_limit(clip: &Clip, joint: usize, limits: &Limits) -> Vec<Snag> {
-    let (Some(scan), Some(limit)) = (Scan::new(clip, joint), limits.get(joint)) else { return Vec::new() };
-    let times: Vec<f64> = clip.grid.times.iter().collect();
-    let readings = readings(scan.track, &times, limit);
-    let is_beyond = |reading: &Reading| limit.fault.beyond_rad(reading) > ROUNDING_RAD;
+    let outlines = Outlines::new(clip.joints.len());
+    let Some(scan) = Scan::new(View { clip, outlines: &outlines }, joint) else { return Vec::new() };
+    let Some(limit) = limits.get(joint) else { return Vec::new() };
     let near = (NEAR_SECS * clip.grid.rate) as usize;
     let near = near.max(NEAR_FRAMES);
-    let mut runs: Vec<(usize, usize)> = Vec::new();
-    for (frame, _) in readings.iter().enumerate().filter(|(_, reading)| is_beyond(reading)) {
-        match runs.last_mut() {
-            Some((_, last)) if frame <= *last + near => *last = frame,
-            _ => runs.push((frame, frame)),
+    let mut runs: Vec<Run> = Vec::new();
+    let mut before: Option<Reading> = None;
+    // Whether a twist was held since the last frame beyond the limit.
+    let mut is_held = false;
+    let times = &clip.grid.times;
+    let passes_keys = matches!(scan.track.paths, Paths::Every(kind) if kind != PathKind::BSpline);
+    let is_key_by_key = passes_keys && scan.track.times == *times;
+    for start in (0..times.len()).step_by(TILE) {
+        let frames = start..(start + TILE).min(times.len());
+        let poses: Vec<Rotor> = if is_key_by_key {
+            frames.map(|frame| scan.unit(frame).unwrap_or_else(|| scan.track.sound_key(frame))).collect()
+        } else {
+            scan.track.at_all(&frames.map(|frame| times.at(frame)).collect::<Vec<_>>())
+        };
+        for (frame, pose) in (start..).zip(poses) {
+            let reading = limit.read(pose, before.as_ref());
+            before = Some(reading);
+            is_held |= reading.is_twist_held;
+            let size_rad = limit.fault.beyond_rad(&reading);
+            if size_rad <= ROUNDING_RAD {
+                continue;
+            }
+            match runs.last_mut() {
+                Some(run) if frame <= run.last + near => {
+                    run.last = frame;
+                    run.is_held |= is_held;
+                    if size_rad >= run.size_rad {
+                        (run.worst, run.size_rad) = (reading, size_rad);
+                    }
+                }
+                _ => {
+                    let is_held = reading.is_twist_held;
+                    runs.push(Run { first: frame, last: frame, worst: reading, size_rad, is_held });
+                }
+            }
+            is_held = false;
         }
     }
-    runs.into_iter()
-        .map(|(first, last)| snag(&scan, limit, &limits.title, &readings, &times, (first, last)))
-        .collect()
+    runs.into_iter().map(|run| snag(&scan, limit, &limits.title, run)).collect()
 }
 
-fn snag(
-    scan: &Scan<'_>,
-    limit: &JointLimit,
-    title: &str,
-    readings: &[Reading],
-    times: &[f64],
-    (first, last): (usize, usize),
-) -> Snag {
-    let run = &readings[first..=last];
-    let beyond = |reading: &Reading| limit.fault.beyond_rad(reading);
-    let worst = run.iter().copied().max_by(|a, b| beyond(a).total_cmp(&beyond(b))).unwrap_or(run[0]);
-    let size_rad = beyond(&worst);
+/// Frames that are read together.
+const TILE: usize = 1024;
+
+/// A run of frames beyond the limit.
+#[derive(Clone, Copy, Debug)]
+struct Run {
+    first: usize,
+    last: usize,
+    /// The reading farthest beyond, and how far that is in radians.
+    worst: Reading,
+    size_rad: f64,
+    /// Whether any twist in it was held.
+    is_held: bool,
+}
+
+fn snag(scan: &Scan<'_>, limit: &JointLimit, title: &str, run: Run) -> Snag {
+    let Run { first, last, worst, size_rad, is_held } = run;
+    let [first_secs, last_secs] = [first, last].map(|frame| scan.clip.grid.times.at(frame));
     let is_twist = limit.fault.twist.beyond_rad(worst.twist_rad) >= limit.fault.swing.beyond_rad(worst.swing);
-    let is_held = run.iter().any(|reading| reading.is_twist_held);
-    let keys = keys_within(scan, times[first], times[last]);
+    let keys = keys_within(scan, first_secs, last_secs);
     let has_keys = keys.is_some();
     // Without a key inside, those on both sides bound what is wrong.
     let (first_key, last_key) = keys.unwrap_or_else(|| {
-        let before = scan.track.times.nearest(times[first]);
-        let before = if scan.secs(before) > times[first] { before.saturating_sub(1) } else { before };
-        (before, (before + 1).min(scan.track.keys.len() - 1))
+        let before = scan.track.times.nearest(first_secs);
+        let before = if scan.secs(before) > first_secs { before.saturating_sub(1) } else { before };
+        (before, (before + 1).min(scan.keys.len() - 1))
     });
     let whose = if title.is_empty() { String::new() } else { format!(" ({title})") };
     let at = if first == last { format!("at frame {first}") } else { format!("at frames {first} to {last}") };
@@ -86,7 +119,7 @@ fn snag(
         text,
     });
     (snag.first_frame, snag.last_frame) = (first, last);
-    (snag.first_secs, snag.last_secs) = (times[first], times[last]);
+    (snag.first_secs, snag.last_secs) = (first_secs, last_secs);
     snag
 }
 

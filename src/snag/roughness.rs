@@ -1,9 +1,11 @@
 //! How far each key lies off the way between its neighbours, and what is usual for that near by.
 
+use std::cell::OnceCell;
 use std::ops::Range;
 
 use crate::rotor::Rotor;
 
+use super::poses::{Lazy, Poses};
 use super::scan::Scan;
 
 /// Keys to both sides that tell what is usual: this long, within these counts.
@@ -13,16 +15,14 @@ const WINDOW_KEYS: (usize, usize) = (7, 30);
 /// The standard deviation of normal noise is this many times its median absolute deviation: 1/Φ⁻¹(3/4).
 const SIGMA_PER_MAD: f64 = 1.4826;
 
-/// A joint's sound poses and their roughness.
+/// A joint's sound poses and their roughness, made as they are looked at.
 #[derive(Debug)]
-pub(super) struct Roughness {
-    /// Unit poses; where the file has none, the one before.
-    pub(super) poses: Vec<Rotor>,
-    /// Key times in seconds.
-    pub(super) secs: Vec<f64>,
-    /// The angle in radians between each key and the way from its neighbour before to the one after; 0 at the ends.
-    pub(super) residual: Vec<f64>,
-    usual: Vec<Usual>,
+pub(super) struct Roughness<'a> {
+    scan: Scan<'a>,
+    poses: Poses<'a>,
+    residuals: Lazy<f64>,
+    /// What is usual in blocks of keys.
+    usual: Vec<OnceCell<Usual>>,
     block: usize,
     reach: usize,
 }
@@ -36,51 +36,62 @@ pub(super) struct Usual {
     pub(super) spread: f64,
 }
 
-impl Roughness {
+impl<'a> Roughness<'a> {
     /// `None` with fewer than `least` keys.
-    pub(super) fn new(scan: &Scan<'_>, least: usize) -> Option<Self> {
-        let count = scan.track.keys.len();
+    pub(super) fn new(scan: Scan<'a>, least: usize) -> Option<Self> {
+        let count = scan.keys.len();
         if count < least {
             return None;
         }
-        let mut poses = Vec::with_capacity(count);
-        let mut before = scan.track.sound_key(0);
-        for key in 0..count {
-            let own = scan.unit(key).unwrap_or(before).aligned_to(before);
-            poses.push(own);
-            before = own;
-        }
-        let secs: Vec<f64> = scan.track.times.iter().collect();
-        let residual: Vec<f64> = (0..count)
-            .map(|key| {
-                if key == 0 || key + 1 == count {
-                    0.0
-                } else {
-                    residual(&poses, &secs, key, key - 1, key + 1)
-                }
-            })
-            .collect();
-        let step_secs = scan.track.times.median_step().unwrap_or(1.0);
+        let step_secs = scan.outline().step_secs().unwrap_or(1.0);
         let reach = ((WINDOW_SECS / step_secs) as usize).clamp(WINDOW_KEYS.0, WINDOW_KEYS.1);
         let block = (reach / 2).max(1);
-        let usual = (0..count)
-            .step_by(block)
-            .map(|start| {
-                let middle = start + block / 2;
-                usual(&residual, middle.saturating_sub(reach)..(middle + reach + 1).min(count), 0..0)
-            })
-            .collect();
-        Some(Self { poses, secs, residual, usual, block, reach })
+        let usual = (0..count.div_ceil(block)).map(|_| OnceCell::new()).collect();
+        let (poses, residuals) = (Poses::new(scan), Lazy::new(count));
+        Some(Self { scan, poses, residuals, usual, block, reach })
     }
 
     pub(super) fn len(&self) -> usize {
         self.poses.len()
     }
 
+    /// The unit pose of a key; where the file has none, the one before.
+    pub(super) fn pose(&self, key: usize) -> Rotor {
+        self.poses.at(key)
+    }
+
+    /// The time of a key in seconds.
+    pub(super) fn secs(&self, key: usize) -> f64 {
+        self.scan.secs(key)
+    }
+
+    /// The first key from `key` on that may be rougher than anything that is not looked at.
+    pub(super) fn next_rough(&self, key: usize) -> usize {
+        self.scan.outline().next_rough(key)
+    }
+
+    /// The angle in radians between a key and the way from its neighbour before to the one after; 0 at the ends.
+    ///
+    /// The way is taken on the chord: for steps under 60° it is within 0.1° of slerp, at a fraction of the cost.
+    #[inline]
+    pub(super) fn residual(&self, key: usize) -> f64 {
+        self.residuals.get(key, |keys| keys.map(|key| self.angle_off(key)).collect())
+    }
+
+    fn angle_off(&self, key: usize) -> f64 {
+        if key == 0 || key + 1 == self.len() {
+            return 0.0;
+        }
+        let [before, own, after] = [key - 1, key, key + 1].map(|key| self.secs(key));
+        let span = after - before;
+        let share = if span > 0.0 { (own - before) / span } else { 0.5 };
+        angle_to_way(self.pose(key - 1), self.pose(key + 1), share, self.pose(key))
+    }
+
     /// What is usual around a run of keys, those next to its ends left out with it.
     pub(super) fn usual_without(&self, first: usize, last: usize) -> Usual {
         let near = first.saturating_sub(self.reach)..(last + self.reach + 1).min(self.len());
-        usual(&self.residual, near, first.saturating_sub(1)..last + 2)
+        self.usual_in(near, first.saturating_sub(1)..last + 2)
     }
 
     /// The median step from key to key around a run, in radians.
@@ -88,24 +99,27 @@ impl Roughness {
         let near = first.saturating_sub(self.reach).max(1)..(last + self.reach + 1).min(self.len());
         let mut steps: Vec<f64> = near
             .filter(|key| !(first.saturating_sub(1)..last + 3).contains(key))
-            .map(|key| angle_of_dot(self.poses[key - 1].dot(self.poses[key])))
+            .map(|key| angle_of_dot(self.pose(key - 1).dot(self.pose(key))))
             .collect();
         if steps.is_empty() { 0.0 } else { take(&mut steps, 0.5) }
     }
 
     /// What is usual around a key.
     pub(super) fn usual(&self, key: usize) -> Usual {
-        self.usual[key / self.block]
+        let index = key / self.block;
+        *self.usual[index].get_or_init(|| {
+            let middle = index * self.block + self.block / 2;
+            let near = middle.saturating_sub(self.reach)..(middle + self.reach + 1).min(self.len());
+            self.usual_in(near, 0..0)
+        })
     }
-}
 
-/// The angle in radians between a key and the way from `before` to `after`.
-///
-/// The way is taken on the chord: for steps under 60° it is within 0.1° of slerp, at a fraction of the cost.
-pub(super) fn residual(poses: &[Rotor], secs: &[f64], key: usize, before: usize, after: usize) -> f64 {
-    let span = secs[after] - secs[before];
-    let share = if span > 0.0 { (secs[key] - secs[before]) / span } else { 0.5 };
-    angle_to_way(poses[before], poses[after], share, poses[key])
+    fn usual_in(&self, near: Range<usize>, without: Range<usize>) -> Usual {
+        // The ends have no residual of their own.
+        let near = near.start.max(1)..near.end.min(self.len() - 1);
+        let keys = near.filter(|key| !without.contains(key));
+        usual_of(keys.map(|key| self.residual(key)).collect())
+    }
 }
 
 /// The angle in radians between a pose and the way from `a` to `b`.
@@ -126,11 +140,8 @@ pub(super) fn angle_of_dot(dot: f64) -> f64 {
     2.0 * dot.abs().min(1.0).acos()
 }
 
-fn usual(residual: &[f64], near: Range<usize>, without: Range<usize>) -> Usual {
-    // The ends have no residual of their own.
-    let near = near.start.max(1)..near.end.min(residual.len() - 1);
-    let keys = near.filter(|key| !without.contains(key));
-    let mut own: Vec<f64> = keys.map(|key| residual[key]).collect();
+/// The middle of some residuals and their spread about it.
+fn usual_of(mut own: Vec<f64>) -> Usual {
     if own.is_empty() {
         return Usual::default();
     }
@@ -161,9 +172,8 @@ mod tests {
 
     #[test]
     fn median_and_spread_are_those_of_the_methods_page() {
-        // reference/method_checks.json `mad`, computed with numpy; an end has no residual of its own.
-        let data = [0.0, 12.1, 11.8, 12.4, 12.0, 55.0, 11.9, 12.2, 0.0];
-        let usual = usual(&data, 0..data.len(), 0..0);
+        // reference/method_checks.json `mad`, computed with numpy.
+        let usual = usual_of(vec![12.1, 11.8, 12.4, 12.0, 55.0, 11.9, 12.2]);
         assert!((usual.median - 12.1).abs() < 1e-9, "{usual:?}");
         // Theirs has more digits of 1/Φ⁻¹(3/4) than ours.
         assert!((usual.spread - 0.296_520_443_701).abs() < 1e-6, "{usual:?}");
@@ -181,10 +191,9 @@ mod tests {
                 if frame == 4 { even * turn(35.0, DVec3::X) } else { even }
             })
             .collect();
-        let secs: Vec<f64> = (0..9).map(f64::from).collect();
         let expected = [0.0, 0.0, 17.565_143, 35.0, 17.564_463, 0.0, 0.0];
         for (key, expected) in (1..8).zip(expected) {
-            let found = residual(&poses, &secs, key, key - 1, key + 1).to_degrees();
+            let found = angle_to_way(poses[key - 1], poses[key + 1], 0.5, poses[key]).to_degrees();
             assert!((found - expected).abs() < 2e-6, "frame {key}: {found}");
         }
     }

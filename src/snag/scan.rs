@@ -4,14 +4,27 @@ use crate::clip::{Clip, PathKind, RotationTrack, Stored};
 use crate::rotor::Rotor;
 use crate::skeleton::JointKind;
 
+use super::outline::{Outline, Outlines};
 use super::{Remedy, Snag, SnagKind};
+
+/// A clip under search, with what is known about its joints.
+#[derive(Clone, Copy, Debug)]
+pub struct View<'a> {
+    /// The clip.
+    pub clip: &'a Clip,
+    /// Of this very clip.
+    pub outlines: &'a Outlines,
+}
 
 /// One joint of a clip, looked at by a finder.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Scan<'a> {
+    pub(super) view: View<'a>,
     pub(super) clip: &'a Clip,
     pub(super) joint: usize,
     pub(super) track: &'a RotationTrack,
+    /// The rotors of the track.
+    pub(super) keys: &'a [Rotor],
 }
 
 /// What a finder says about a run of keys; [`Scan::snag`] adds where it is.
@@ -29,10 +42,21 @@ pub(super) struct Finding {
 
 impl<'a> Scan<'a> {
     /// `None` for what has no keys, and for carriers: they are not listed.
-    pub(super) fn new(clip: &'a Clip, joint: usize) -> Option<Self> {
+    pub(super) fn new(view: View<'a>, joint: usize) -> Option<Self> {
+        let clip = view.clip;
         let track = clip.rotation(joint).filter(|track| !track.keys.is_empty())?;
         let listed = clip.skeleton.joints().get(joint).is_some_and(|own| own.kind == JointKind::Joint);
-        listed.then_some(Self { clip, joint, track })
+        listed.then(|| Self { view, clip, joint, track, keys: &track.keys })
+    }
+
+    /// Another joint of the same clip.
+    pub(super) fn other(&self, joint: usize) -> Option<Self> {
+        Self::new(self.view, joint)
+    }
+
+    /// Where the joint does anything that is worth a look.
+    pub(super) fn outline(&self) -> &'a Outline {
+        self.view.outlines.of(self.clip, self.joint)
     }
 
     pub(super) fn label(&self) -> &'a str {
@@ -49,7 +73,7 @@ impl<'a> Scan<'a> {
 
     /// The key's rotor made unit; `None` where it is no rotation.
     pub(super) fn unit(&self, key: usize) -> Option<Rotor> {
-        self.track.keys[key].try_normalize()
+        self.keys[key].try_normalize()
     }
 
     /// Whether the file stores rotors, so that signs and lengths are its own.
@@ -67,7 +91,7 @@ impl<'a> Scan<'a> {
         let (from, to) = (self.frame(first), self.frame(last));
         if from == to {
             format!("at frame {from}")
-        } else if last + 1 == self.track.keys.len() {
+        } else if last + 1 == self.keys.len() {
             format!("from frame {from} to the end")
         } else {
             format!("at frames {from} to {to}")
@@ -96,9 +120,13 @@ impl<'a> Scan<'a> {
 
 /// Runs of neighbouring keys with the same state, `(first, last, state)`; keys without a state belong to none.
 pub(super) fn runs<T: PartialEq>(states: impl Iterator<Item = Option<T>>) -> Vec<(usize, usize, T)> {
+    runs_of(states.enumerate().filter_map(|(key, state)| Some((key, state?))))
+}
+
+/// The same of the keys that have a state, in order.
+pub(super) fn runs_of<T: PartialEq>(states: impl Iterator<Item = (usize, T)>) -> Vec<(usize, usize, T)> {
     let mut found: Vec<(usize, usize, T)> = Vec::new();
-    for (key, state) in states.enumerate() {
-        let Some(state) = state else { continue };
+    for (key, state) in states {
         match found.last_mut() {
             Some((_, last, own)) if *last + 1 == key && *own == state => *last = key,
             _ => found.push((key, key, state)),

@@ -2,9 +2,9 @@
 
 use std::f64::consts::TAU;
 
-use crate::clip::{Clip, PathKind};
+use crate::clip::PathKind;
 
-use super::scan::{Finding, Scan, runs};
+use super::scan::{Finding, Scan, View, runs};
 use super::{Remedy, Snag, SnagKind};
 
 /// A dot product of unit rotors this near 0 is a turn of exactly half a round: both ways are equally long.
@@ -25,8 +25,8 @@ enum Step {
 ///
 /// A cubic segment between opposite signs moves otherwise than one between equal signs, so it is a long way and none of
 /// these.
-pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
-    let Some(scan) = Scan::new(clip, joint).filter(Scan::stores_rotors) else { return Vec::new() };
+pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
+    let Some(scan) = Scan::new(view, joint).filter(Scan::stores_rotors) else { return Vec::new() };
     let steps = steps(&scan);
     let mut snags: Vec<Snag> = steps
         .iter()
@@ -57,7 +57,7 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
 /// The step into each key; the first has none.
 fn steps(scan: &Scan<'_>) -> Vec<Step> {
     let mut before = None;
-    (0..scan.track.keys.len())
+    (0..scan.keys.len())
         .map(|key| {
             let Some(own) = scan.unit(key) else { return Step::Kept };
             let Some(near) = before.replace(own) else { return Step::Kept };

@@ -5,11 +5,10 @@ mod ends;
 
 use std::f64::consts::PI;
 
-use crate::clip::Clip;
 use crate::rotor::{Rotor, slerp};
 
 use super::roughness::{Roughness, angle_to_way};
-use super::scan::{Finding, Scan};
+use super::scan::{Finding, Scan, View};
 use super::stuck::is_same;
 use super::{Remedy, Snag, SnagKind};
 use alike::Alike;
@@ -89,15 +88,19 @@ struct Run {
 }
 
 /// Finds spikes of one joint.
-pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
-    let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
-    let Some(rough) = Roughness::new(&scan, LEAST_KEYS) else { return Vec::new() };
+pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
+    let Some(scan) = Scan::new(view, joint) else { return Vec::new() };
+    let Some(rough) = Roughness::new(scan, LEAST_KEYS) else { return Vec::new() };
     let mut snags = Vec::new();
     let alike = Alike::new(&scan, &rough);
     let mut key = 1;
-    while key + 1 < rough.len() {
+    loop {
+        key = rough.next_rough(key);
+        if key + 1 >= rough.len() {
+            break;
+        }
         let threshold = threshold(&rough, key);
-        if rough.residual[key] < threshold {
+        if rough.residual(key) < threshold {
             key += 1;
             continue;
         }
@@ -117,17 +120,23 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
     snags
 }
 
-/// From this roughness on a key may belong to a spike: at the ends of a longer run only half of it shows.
-fn threshold(rough: &Roughness, key: usize) -> f64 {
+/// At the ends of a longer run only half of its roughness shows.
+const SHOWN: f64 = 2.5;
+
+/// No key with less roughness is looked at.
+pub(super) const LEAST_LOOKED_AT_RAD: f64 = LEAST_RAD / SHOWN;
+
+/// From this roughness on a key may belong to a spike.
+fn threshold(rough: &Roughness<'_>, key: usize) -> f64 {
     let usual = rough.usual(key);
-    (usual.median + LEAST_SCORE * usual.spread).max(LEAST_RAD) / 2.5
+    (usual.median + LEAST_SCORE * usual.spread).max(LEAST_RAD) / SHOWN
 }
 
 /// The last of the rough keys from `start` on, with no more than a calm one between.
-fn stretch(rough: &Roughness, start: usize, threshold: f64) -> usize {
+fn stretch(rough: &Roughness<'_>, start: usize, threshold: f64) -> usize {
     let mut end = start;
     for key in start + 1..(start + LONGEST + 4).min(rough.len() - 1) {
-        if rough.residual[key] >= threshold {
+        if rough.residual(key) >= threshold {
             end = key;
         } else if key > end + 2 {
             break;
@@ -137,7 +146,7 @@ fn stretch(rough: &Roughness, start: usize, threshold: f64) -> usize {
 }
 
 /// The run in a stretch of rough keys that takes most of the roughness with it.
-fn best_run(rough: &Roughness, start: usize, end: usize) -> Option<Run> {
+fn best_run(rough: &Roughness<'_>, start: usize, end: usize) -> Option<Run> {
     let mut best: Option<(f64, Run)> = None;
     for length in 1..=LONGEST {
         for first in start..=end {
@@ -157,33 +166,33 @@ fn best_run(rough: &Roughness, start: usize, end: usize) -> Option<Run> {
 }
 
 /// How rough the motion stays around `first..=last` when those keys are drawn anew, and those of `also` with them.
-fn rest(rough: &Roughness, (first, last): (usize, usize), also: Option<(usize, usize)>) -> f64 {
+fn rest(rough: &Roughness<'_>, (first, last): (usize, usize), also: Option<(usize, usize)>) -> f64 {
     let runs = [Some((first, last)), also];
     let way = |key: usize| {
         let inside = |&(first, last): &(usize, usize)| (first..=last).contains(&key);
         match runs.iter().flatten().find(|run| inside(run)) {
-            None => rough.poses[key],
+            None => rough.pose(key),
             Some((first, last)) => across(rough, *first, *last, key),
         }
     };
     (first.saturating_sub(2).max(1)..=(last + 2).min(rough.len() - 2))
         .map(|key| {
-            let share = (rough.secs[key] - rough.secs[key - 1]) / (rough.secs[key + 1] - rough.secs[key - 1]);
+            let share = (rough.secs(key) - rough.secs(key - 1)) / (rough.secs(key + 1) - rough.secs(key - 1));
             angle_to_way(way(key - 1), way(key + 1), share, way(key))
         })
         .fold(0.0, f64::max)
 }
 
 /// A key of `first..=last` on the way across them.
-fn across(rough: &Roughness, first: usize, last: usize, key: usize) -> Rotor {
+fn across(rough: &Roughness<'_>, first: usize, last: usize, key: usize) -> Rotor {
     let (a, b) = (first - 1, last + 1);
-    let share = (rough.secs[key] - rough.secs[a]) / (rough.secs[b] - rough.secs[a]);
-    slerp(rough.poses[a], rough.poses[b], share)
+    let share = (rough.secs(key) - rough.secs(a)) / (rough.secs(b) - rough.secs(a));
+    slerp(rough.pose(a), rough.pose(b), share)
 }
 
-fn weigh(rough: &Roughness, first: usize, last: usize) -> Run {
+fn weigh(rough: &Roughness<'_>, first: usize, last: usize) -> Run {
     let mut off: Vec<f64> =
-        (first..=last).map(|key| across(rough, first, last, key).turn_to(rough.poses[key])).collect();
+        (first..=last).map(|key| across(rough, first, last, key).turn_to(rough.pose(key))).collect();
     off.sort_by(f64::total_cmp);
     let near = first.saturating_sub(2).max(1)..=(last + 2).min(rough.len() - 2);
     Run {
@@ -191,15 +200,15 @@ fn weigh(rough: &Roughness, first: usize, last: usize) -> Run {
         last,
         size: off[off.len() / 2],
         weakest: off[0],
-        peak: near.map(|key| rough.residual[key]).fold(0.0, f64::max),
+        peak: near.map(|key| rough.residual(key)).fold(0.0, f64::max),
         rest: rest(rough, (first, last), None),
-        across: rough.poses[first - 1].turn_to(rough.poses[last + 1]),
+        across: rough.pose(first - 1).turn_to(rough.pose(last + 1)),
     }
 }
 
 /// How sure it is that `run` is a spike with another close by: of two neither takes the other's roughness with it, so
 /// both are drawn anew to see what stays rough.
-fn beside_another(scan: &Scan<'_>, rough: &Roughness, run: Run) -> Option<f64> {
+fn beside_another(scan: &Scan<'_>, rough: &Roughness<'_>, run: Run) -> Option<f64> {
     // The roughness must be the run's own.
     if run.last > run.first + 1 || run.peak > 1.3 * run.size {
         return None;
@@ -221,11 +230,11 @@ fn beside_another(scan: &Scan<'_>, rough: &Roughness, run: Run) -> Option<f64> {
 }
 
 /// Whether a run is a spike, and how sure that is, 0.5 to 1.
-fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Option<f64> {
+fn judge(scan: &Scan<'_>, rough: &Roughness<'_>, run: Run, least_product: f64) -> Option<f64> {
     if !may_be_spike(scan, rough, run) {
         return None;
     }
-    let span_secs = rough.secs[run.last + 1] - rough.secs[run.first - 1];
+    let span_secs = rough.secs(run.last + 1) - rough.secs(run.first - 1);
     let swells = run.last > run.first && run.weakest < FLICK_SHARE * run.size;
     if span_secs >= FLICK_SECS && run.size < FLICK_RAD && swells {
         return None;
@@ -250,7 +259,7 @@ fn judge(scan: &Scan<'_>, rough: &Roughness, run: Run, least_product: f64) -> Op
 }
 
 /// Whether a run has enough sound keys on both sides, and the joint neither jumps as its file says nor rests there.
-fn may_be_spike(scan: &Scan<'_>, rough: &Roughness, run: Run) -> bool {
+fn may_be_spike(scan: &Scan<'_>, rough: &Roughness<'_>, run: Run) -> bool {
     run.first > START_KEYS
         && run.last + END_KEYS < rough.len()
         && (run.first - 1..=run.last).all(|key| scan.moves_after(key))
@@ -258,15 +267,15 @@ fn may_be_spike(scan: &Scan<'_>, rough: &Roughness, run: Run) -> bool {
 }
 
 /// Whether a run comes back to where it began, as nearly as the joint's motion near by would.
-fn comes_back(rough: &Roughness, run: Run) -> bool {
+fn comes_back(rough: &Roughness<'_>, run: Run) -> bool {
     let keys = (run.last + 2 - run.first) as f64;
     let usual = USUAL_STEPS * rough.usual_step_without(run.first, run.last) * keys;
     run.across <= (STEP_SIZES * run.size).max(usual)
 }
 
 /// Whether the keys of a run do no more than repeat the one before them: the joint is stuck there.
-fn is_rest(rough: &Roughness, run: Run) -> bool {
-    run.last > run.first && (run.first..=run.last).all(|key| is_same(rough.poses[key - 1], rough.poses[key]))
+fn is_rest(rough: &Roughness<'_>, run: Run) -> bool {
+    run.last > run.first && (run.first..=run.last).all(|key| is_same(rough.pose(key - 1), rough.pose(key)))
 }
 
 /// From this confidence on a spike may be mended unasked.

@@ -1,12 +1,12 @@
 //! Runs of keys in which a joint stands perfectly still although it moves: a signal that dropped out.
 
+use std::cell::OnceCell;
 use std::f64::consts::PI;
 
-use crate::clip::Clip;
 use crate::rotor::Rotor;
 
 use super::roughness::angle_of_dot;
-use super::scan::{Finding, Scan};
+use super::scan::{Finding, Scan, View, runs_of};
 use super::{Remedy, Snag, SnagKind};
 
 /// With fewer keys nothing can be said about how a joint moves.
@@ -17,7 +17,7 @@ const SHORTEST_KEYS: usize = 3;
 const SHORTEST_SECS: f64 = 0.04;
 
 /// Steps up to this are none: what is left of equal numbers after a change of format.
-const STILL_RAD: f64 = 2e-5 / 180.0 * PI;
+pub(super) const STILL_RAD: f64 = 2e-5 / 180.0 * PI;
 
 /// A joint whose smallest steps (this share of all) are so many times what counts as still never stands still by itself:
 /// it carries the noise of a capture, or moves on all the time.
@@ -66,8 +66,8 @@ const HELD_SHARE: f64 = 0.5;
 const SAMPLED: usize = 48;
 
 /// Finds stuck runs of one joint.
-pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
-    let Some(scan) = Scan::new(clip, joint).filter(|scan| scan.track.keys.len() >= LEAST_KEYS) else {
+pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
+    let Some(scan) = Scan::new(view, joint).filter(|scan| scan.keys.len() >= LEAST_KEYS) else {
         return Vec::new();
     };
     let rests = rests(&scan);
@@ -96,23 +96,22 @@ pub(super) fn is_same(a: Rotor, b: Rotor) -> bool {
 
 /// All runs of repeated keys long enough to be looked at, inside the clip.
 fn rests(scan: &Scan<'_>) -> Vec<Rest> {
-    let keys = &scan.track.keys;
-    let mut found: Vec<Rest> = Vec::new();
-    let mut first = 1;
-    for key in 1..=keys.len() {
-        if key < keys.len() && is_same(keys[key - 1], keys[key]) && scan.moves_after(key - 1) {
-            continue;
-        }
-        if key - first >= SHORTEST_KEYS && scan.secs(key - 1) - scan.secs(first - 1) >= SHORTEST_SECS {
-            found.push(Rest { first, last: key - 1 });
-        }
-        first = key + 1;
-    }
-    found
+    let keys = scan.keys;
+    let repeats = |key: &usize| *key > 0 && is_same(keys[key - 1], keys[*key]) && scan.moves_after(key - 1);
+    runs_of(scan.outline().repeating().filter(repeats).map(|key| (key, ())))
+        .into_iter()
+        .map(|(first, last, ())| Rest { first, last })
+        .filter(|rest| {
+            let secs = scan.secs(rest.last) - scan.secs(rest.first - 1);
+            rest.last + 1 - rest.first >= SHORTEST_KEYS && secs >= SHORTEST_SECS
+        })
+        .collect()
 }
 
 /// How a joint moves and rests over the whole clip.
 struct Habits {
+    /// The size of the scalar part of each key, in order, with the key: equal poses lie close together there.
+    by_scalar: OnceCell<Vec<(f64, usize)>>,
     /// Whether it never stands still by itself.
     is_live: bool,
     /// Whether it stops and goes on abruptly time and again.
@@ -124,7 +123,7 @@ struct Habits {
 impl Habits {
     /// `None` for a joint that has many rests, or that never moves.
     fn new(scan: &Scan<'_>, rests: &[Rest]) -> Option<Self> {
-        let count = scan.track.keys.len();
+        let count = scan.keys.len();
         let secs = scan.secs(count - 1) - scan.secs(0);
         if rests.len() > HABIT_RUNS + (secs / HABIT_SECS) as usize {
             return None;
@@ -141,6 +140,7 @@ impl Habits {
         let smallest = *moving.select_nth_unstable_by(rank, f64::total_cmp).1;
         let abrupt = |rest: &&Rest| Ends::new(scan, **rest).is_some_and(|ends| ends.is_very_abrupt());
         Some(Self {
+            by_scalar: OnceCell::new(),
             has_manner: rests.iter().filter(abrupt).count() > MANNER,
             is_still,
             is_live: !is_still
@@ -194,7 +194,7 @@ struct Ends {
 impl Ends {
     /// `None` at either end of the track: motion on one side only, and holding a pose there is common.
     fn new(scan: &Scan<'_>, Rest { first, last }: Rest) -> Option<Self> {
-        let count = scan.track.keys.len();
+        let count = scan.keys.len();
         if first < 2 || last + 2 >= count {
             return None;
         }
@@ -227,7 +227,9 @@ fn judge(scan: &Scan<'_>, habits: &Habits, rest: Rest) -> Option<Snag> {
     let is_inside = ends.before > 0.0 && ends.after > 0.0;
     let confidence = match (habits.is_live, ends.catches_up) {
         (true, true) => 0.95,
-        (true, false) if ends.abruptness >= ABRUPT && !ends.is_even && !is_found_again(scan, rest) => 0.8,
+        (true, false) if ends.abruptness >= ABRUPT && !ends.is_even && !habits.is_found_again(scan, rest) => {
+            0.8
+        }
         (false, true) if is_inside && ends.is_very_abrupt() => 0.6,
         (false, false) if is_inside && ends.is_very_abrupt() && !habits.has_manner && !habits.is_still => 0.5,
         _ => return None,
@@ -265,12 +267,23 @@ fn step_between(scan: &Scan<'_>, a: usize, b: usize) -> f64 {
     }
 }
 
-/// Whether the joint takes the very pose of the rest at other times too: it stands at the end of its range.
-fn is_found_again(scan: &Scan<'_>, rest: Rest) -> bool {
-    let held = scan.track.keys[rest.first];
-    let keys = &scan.track.keys;
-    let outside = keys[..rest.first - 1].iter().chain(&keys[rest.last + 1..]);
-    outside.filter(|own| is_same(**own, held)).take(FOUND_AGAIN).count() == FOUND_AGAIN
+impl Habits {
+    /// Whether the joint takes the very pose of the rest at other times too: it stands at the end of its range.
+    fn is_found_again(&self, scan: &Scan<'_>, rest: Rest) -> bool {
+        let by_scalar = self.by_scalar.get_or_init(|| {
+            let mut sorted: Vec<(f64, usize)> = scan.keys.iter().map(|own| own.s.abs()).zip(0..).collect();
+            sorted.sort_by(|a, b| a.0.total_cmp(&b.0));
+            sorted
+        });
+        let held = scan.keys[rest.first];
+        let (low, high) = (held.s.abs() - STILL_RAD, held.s.abs() + STILL_RAD);
+        let near = &by_scalar[by_scalar.partition_point(|(own, _)| *own < low)..];
+        let is_again = |(_, key): &&(f64, usize)| {
+            !(rest.first - 1..=rest.last).contains(key) && is_same(scan.keys[*key], held)
+        };
+        near.iter().take_while(|(own, _)| *own <= high).filter(is_again).take(FOUND_AGAIN).count()
+            == FOUND_AGAIN
+    }
 }
 
 /// What the other joints that move at all do during a rest.
@@ -288,18 +301,17 @@ impl Along {
         let mut along = Self::default();
         let (start, end) = (scan.secs(rest.first - 1), scan.secs(rest.last));
         for other in scan.clip.skeleton.listed().filter(|other| *other != scan.joint) {
-            let Some(other) = Scan::new(scan.clip, other) else { continue };
-            let count = other.track.keys.len();
+            let Some(other) = scan.other(other) else { continue };
+            let count = other.keys.len();
             let sampled = (count.saturating_sub(1)).min(SAMPLED);
             let steps = (0..sampled).map(|i| 1 + i * (count - 1) / sampled);
-            let moves =
-                steps.filter(|&key| !is_same(other.track.keys[key - 1], other.track.keys[key])).count();
+            let moves = steps.filter(|&key| !is_same(other.keys[key - 1], other.keys[key])).count();
             if moves * 2 <= sampled {
                 continue;
             }
             along.moving += 1;
             let (from, to) = (other.track.times.nearest(start), other.track.times.nearest(end));
-            let keys = &other.track.keys;
+            let keys = other.keys;
             let is_repeat = |key: usize| (1..count).contains(&key) && is_same(keys[key - 1], keys[key]);
             let repeats = (from + 1..=to).filter(|&key| is_repeat(key)).count();
             along.held += usize::from(to > from && repeats * 5 >= (to - from) * 4);

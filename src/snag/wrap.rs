@@ -2,16 +2,16 @@
 
 use std::f64::consts::TAU;
 
-use crate::clip::{Clip, FileAngles, Stored};
+use crate::clip::{FileAngles, Stored};
 use crate::rotor::Bivector;
 
 use super::plane_turns::{PlaneRun, plane_runs};
-use super::scan::{Finding, Scan};
+use super::scan::{Finding, Scan, View};
 use super::{Memory, Remedy, Snag, SnagKind};
 
 /// Finds wraps of one joint.
-pub(super) fn find(clip: &Clip, joint: usize, memory: &mut Memory) -> Vec<Snag> {
-    let Some(scan) = Scan::new(clip, joint) else { return Vec::new() };
+pub(super) fn find(view: View<'_>, joint: usize, memory: &mut Memory) -> Vec<Snag> {
+    let Some(scan) = Scan::new(view, joint) else { return Vec::new() };
     match &scan.track.stored {
         Stored::Rotors => Vec::new(),
         Stored::Angles(angles) => of_angles(&scan, angles, memory),

@@ -17,18 +17,9 @@ use turnwright::mend::{SurveyOptions, survey};
 use turnwright::rotor::{Rotor, slerp};
 use turnwright::snag::{Snag, SnagKind, Unwatched};
 
-use crate::planter::Random;
+use crate::planter::{PEOPLE, Random};
 use crate::support::shared;
 
-/// Captures of people, for the preset.
-const PEOPLE: [&str; 6] = [
-    "bvh/cmu_02_01_walk.bvh",
-    "bvh/zxy_19joints_30fps.bvh",
-    "bvh/walk01.bvh",
-    "bvh/xyz_affective_walk.bvh",
-    "bvh/mixed_order_6ch.bvh",
-    "bvh/yxz_23joints_120fps.bvh",
-];
 /// Any body, for limits of its own.
 const ANY: [&str; 8] = [
     "bvh/cmu_02_01_walk.bvh",

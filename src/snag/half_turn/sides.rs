@@ -150,12 +150,12 @@ fn other_side(scan: &Scan<'_>) -> Option<Rotor> {
     if other == scan.joint || mirror.partner(other) != scan.joint {
         return None;
     }
-    let partner = Scan::new(scan.clip, other)?;
+    let partner = scan.other(other)?;
     if !jumps(&partner).is_empty() {
         return None;
     }
-    let stride = (partner.track.keys.len() / (4 * SAMPLED)).max(1);
-    let poses: Vec<(Rotor, f64)> = (0..partner.track.keys.len())
+    let stride = (partner.keys.len() / (4 * SAMPLED)).max(1);
+    let poses: Vec<(Rotor, f64)> = (0..partner.keys.len())
         .step_by(stride)
         .filter_map(|key| Some((mirror.mirrored(other, partner.unit(key)?), 1.0)))
         .collect();
@@ -188,8 +188,10 @@ impl Directions {
         let with_rest = |joint: usize, limb: DVec3| [limb, in_body(joint).apply(limb)];
         let (next, limb) = limb_of(skeleton, scan.joint)?;
         let turns_along = |child: usize| {
-            Scan::new(scan.clip, child)
-                .is_some_and(|child| own_jumps.iter().any(|jump| jumps(&child).binary_search(jump).is_ok()))
+            scan.other(child).is_some_and(|child| {
+                let jumps = jumps(&child);
+                own_jumps.iter().any(|jump| jumps.binary_search(jump).is_ok())
+            })
         };
         let child = next
             .filter(|&child| !turns_along(child))

@@ -7,14 +7,16 @@
 
 mod white;
 
+use std::cell::OnceCell;
 use std::f64::consts::PI;
 use std::ops::Range;
 
-use crate::clip::Clip;
+use crate::clip::Times;
 use crate::rotor::Rotor;
 
 use super::mirror::mirror_of;
-use super::scan::{Finding, Scan};
+use super::poses::{Lazy, Poses};
+use super::scan::{Finding, Scan, View};
 use super::{Remedy, Snag, SnagKind};
 
 /// With fewer keys nothing can be said about what is usual.
@@ -29,13 +31,13 @@ const WINDOW_SECS: f64 = 0.2;
 const WINDOW_KEYS: usize = 8;
 
 /// Poses up to so far apart are compared: what trembles slower is motion.
-const FARTHEST_SECS: f64 = 0.034;
+pub(super) const FARTHEST_SECS: f64 = 0.034;
 /// With fewer poses a second than this a motion's own bends look like noise.
 const COARSEST_SECS: f64 = 0.05;
-const LAGS: [usize; 3] = [1, 2, 4];
+pub(super) const LAGS: [usize; 3] = [1, 2, 4];
 
 /// Noise below this, per axis, is not seen.
-const LEAST_RAD: f64 = 0.35 / 180.0 * PI;
+pub(super) const LEAST_RAD: f64 = 0.35 / 180.0 * PI;
 
 /// Jitter is so many times the joint's quiet level: what this share of its windows stays below.
 const TIMES_QUIET: f64 = 4.0;
@@ -67,24 +69,24 @@ const UNEVEN: f64 = 0.2;
 
 /// The fourth difference of white noise of this deviation in each of three axes has a squared length of 3 · 70 times its
 /// square; the middle length of three normal numbers is 1.538 of their deviation.
-const MIDDLE: f64 = 1.538;
-const FOURTH: f64 = 8.366_6;
+pub(super) const MIDDLE: f64 = 1.538;
+pub(super) const FOURTH: f64 = 8.366_6;
 
 /// Finds trembling spans of one joint.
-pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
-    let Some(scan) = Scan::new(clip, joint).filter(|scan| scan.track.keys.len() >= LEAST_KEYS) else {
+pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
+    let Some(scan) = Scan::new(view, joint).filter(|scan| scan.keys.len() >= LEAST_KEYS) else {
         return Vec::new();
     };
-    let Some(row) = Row::new(&scan) else { return Vec::new() };
+    let Some(row) = Row::new(scan) else { return Vec::new() };
     let step_secs = row.step_secs;
     if step_secs > COARSEST_SECS {
         return Vec::new();
     }
-    for lag in LAGS {
+    for (index, lag) in LAGS.into_iter().enumerate() {
         if lag > 1 && lag as f64 * step_secs > FARTHEST_SECS {
             break;
         }
-        let Some(levels) = Levels::new(&row, lag) else { break };
+        let Some(levels) = Levels::new(&row, index) else { break };
         let mut spans = spans(&scan, &row, &levels);
         if lag == 1 {
             let loud = levels.loud();
@@ -101,7 +103,7 @@ pub(super) fn find(clip: &Clip, joint: usize) -> Vec<Snag> {
 
 /// Two lists of spans as one, in order. Of two that overlap it is both together where they tremble all along, else the one
 /// of `others`, which are fitted closer.
-fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels) -> Vec<Span> {
+fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels<'_>) -> Vec<Span> {
     let overlap = |a: &Span, b: &Span| a.first <= b.last + 2 && b.first <= a.last + 2;
     let mut kept: Vec<Span> = others;
     for span in spans {
@@ -112,8 +114,9 @@ fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels) -> Vec<Span> {
                 (first.min(other.first), last.max(other.last))
             });
         let is_overlapped = kept.iter().any(|other| overlap(&span, other));
-        let inside = &levels.each[first.max(2)..(last + 1).min(levels.each.len() - 2).max(first.max(2))];
-        let level = 0.5 * white::usual_loud(inside);
+        let inside = first.max(2)..(last + 1).min(levels.len() - 2).max(first.max(2));
+        let inside: Vec<f64> = inside.map(|key| levels.at(key)).collect();
+        let level = 0.5 * white::usual_loud(&inside);
         let trembling = inside.iter().filter(|own| **own >= level).count();
         if is_overlapped && trembling * 4 < inside.len() * 3 {
             continue;
@@ -130,18 +133,18 @@ fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels) -> Vec<Span> {
 }
 
 /// A joint's poses and their times.
-struct Row {
+struct Row<'a> {
+    scan: Scan<'a>,
     /// Unit, of neighbouring signs; where the file has none, the one before.
-    poses: Vec<Rotor>,
-    secs: Vec<f64>,
+    poses: Poses<'a>,
     /// The usual time from key to key.
     step_secs: f64,
 }
 
-impl Row {
-    fn new(scan: &Scan<'_>) -> Option<Self> {
-        let step_secs = scan.track.times.median_step()?;
-        Some(Self { poses: poses_of(scan), secs: scan.track.times.iter().collect(), step_secs })
+impl<'a> Row<'a> {
+    fn new(scan: Scan<'a>) -> Option<Self> {
+        let step_secs = scan.outline().step_secs()?;
+        Some(Self { scan, poses: Poses::new(scan), step_secs })
     }
 
     fn len(&self) -> usize {
@@ -154,66 +157,105 @@ impl Row {
         if key < 2 * lag || key + 2 * lag >= self.len() {
             return 0.0;
         }
+        let five = [0, 1, 2, 3, 4].map(|i| key + i * lag - 2 * lag);
         let wide = lag as f64 * self.step_secs;
-        let is_even = [0, 1, 2, 3].iter().all(|i| {
-            let from = key + i * lag - 2 * lag;
-            (self.secs[from + lag] - self.secs[from] - wide).abs() <= UNEVEN * wide
-        });
-        if is_even { fourth_difference(&self.poses, key, lag) } else { 0.0 }
+        let secs = |key: usize| self.scan.secs(key);
+        let is_even = matches!(self.scan.track.times, Times::Even { .. })
+            || five.windows(2).all(|two| (secs(two[1]) - secs(two[0]) - wide).abs() <= UNEVEN * wide);
+        if is_even { fourth_difference(five.map(|key| self.poses.at(key))) } else { 0.0 }
     }
 }
 
-fn poses_of(scan: &Scan<'_>) -> Vec<Rotor> {
-    let mut before = scan.track.sound_key(0);
-    (0..scan.track.keys.len())
-        .map(|key| {
-            before = scan.unit(key).unwrap_or(before).aligned_to(before);
-            before
-        })
-        .collect()
-}
-
-/// How much a joint trembles, key by key and in windows, in radians per axis.
-struct Levels {
+/// How much a joint trembles, key by key and in windows, in radians per axis; made as it is looked at.
+struct Levels<'r> {
+    row: &'r Row<'r>,
+    /// Which of [`LAGS`], and that.
+    index: usize,
     lag: usize,
     /// Length of the fourth difference at each key as the deviation of noise that it stands for; 0 at the ends.
-    each: Vec<f64>,
-    /// Keys from one window to the next; each is as wide as twice that.
+    each: Lazy<f64>,
+    /// Keys from one window to the next.
     hop: usize,
-    /// The level of each window, and the growth to twice the distance.
-    windows: Vec<(f64, f64)>,
+    /// Keys of a window: about twice that.
+    width: usize,
+    windows: Vec<OnceCell<Window>>,
 }
 
-impl Levels {
-    fn new(row: &Row, lag: usize) -> Option<Self> {
+/// What is seen in a window.
+#[derive(Clone, Copy)]
+struct Window {
+    level: f64,
+    /// The level at twice the distance beside that.
+    growth: f64,
+}
+
+impl<'r> Levels<'r> {
+    fn new(row: &'r Row<'r>, index: usize) -> Option<Self> {
+        let lag = LAGS[index];
         if row.len() < 8 * lag + WINDOW_KEYS {
             return None;
         }
-        let each: Vec<f64> = (0..row.len()).map(|key| row.noise(key, lag)).collect();
         let width = ((WINDOW_SECS / row.step_secs) as usize).max(WINDOW_KEYS);
         let hop = width.div_ceil(2);
-        let (low, high) = (2 * lag, row.len() - 2 * lag);
-        let mut windows = Vec::new();
-        let mut start = 0;
-        while start < row.len() {
-            let near = start.max(low).min(high - width.min(high - low))..(start + width).clamp(low, high);
-            let level = middle(&each[near.clone()]);
+        let windows = (0..row.len().div_ceil(hop)).map(|_| OnceCell::new()).collect();
+        Some(Self { row, index, lag, each: Lazy::new(row.len()), hop, width, windows })
+    }
+
+    /// How many keys there are.
+    fn len(&self) -> usize {
+        self.row.len()
+    }
+
+    /// The level at a key.
+    fn at(&self, key: usize) -> f64 {
+        self.each.get(key, |keys| keys.map(|key| self.row.noise(key, self.lag)).collect())
+    }
+
+    /// The levels at some keys; `None` where there are no such keys.
+    fn within(&self, keys: Range<usize>) -> Option<Vec<f64>> {
+        (keys.start <= keys.end && keys.end <= self.len()).then(|| keys.map(|key| self.at(key)).collect())
+    }
+
+    /// The keys of a window.
+    fn keys_of(&self, window: usize) -> Range<usize> {
+        let (low, high) = (2 * self.lag, self.len() - 2 * self.lag);
+        let start = window * self.hop;
+        start.max(low).min(high - self.width.min(high - low))..(start + self.width).clamp(low, high)
+    }
+
+    fn window(&self, window: usize) -> Window {
+        *self.windows[window].get_or_init(|| {
+            let near = self.keys_of(window);
+            let level = middle_of(near.clone().map(|key| self.at(key)).collect());
             // Growth matters only where there is something to see.
-            let growth =
-                if level >= LEAST_RAD { middle(&twice(row, lag, near)) / level } else { f64::INFINITY };
-            windows.push((level, growth));
-            start += hop;
-        }
-        Some(Self { lag, each, hop, windows })
+            let growth = if level >= LEAST_RAD {
+                middle_of(twice(self.row, self.lag, near)) / level
+            } else {
+                f64::INFINITY
+            };
+            Window { level, growth }
+        })
+    }
+
+    /// A window whose level is at least `least`, which is no less than [`LEAST_RAD`].
+    fn loud_window(&self, window: usize, least: f64) -> Option<Window> {
+        let keys = self.keys_of(window);
+        let needed = keys.len() - keys.len() / 2;
+        let may_be = self.row.scan.outline().trembling(&keys, self.index) >= needed;
+        may_be.then(|| self.window(window)).filter(|own| own.level >= least)
+    }
+
+    /// The windows that are loud enough for anything to be seen.
+    fn loud_windows(&self) -> impl Iterator<Item = (usize, Window)> + '_ {
+        (0..self.windows.len()).filter_map(|index| Some((index, self.loud_window(index, LEAST_RAD)?)))
     }
 
     /// Where there is anything to see: keys of windows that are loud enough, and as many beside them.
     fn loud(&self) -> Vec<Range<usize>> {
-        let count = self.each.len();
         let mut loud: Vec<Range<usize>> = Vec::new();
-        for (index, _) in self.windows.iter().enumerate().filter(|(_, window)| window.0 >= LEAST_RAD) {
+        for (index, _) in self.loud_windows() {
             let start = (index * self.hop).saturating_sub(2 * self.hop);
-            let end = (index * self.hop + 4 * self.hop).min(count);
+            let end = (index * self.hop + 4 * self.hop).min(self.len());
             match loud.last_mut() {
                 Some(last) if start <= last.end => last.end = end,
                 _ => loud.push(start..end),
@@ -228,9 +270,9 @@ impl Levels {
     }
 
     /// The same among some of the windows; 0 without any.
-    fn level_among(&self, share: f64, is_counted: impl Fn(&(f64, f64)) -> bool) -> f64 {
-        let counted = self.windows.iter().filter(|window| is_counted(window));
-        let mut levels: Vec<f64> = counted.map(|window| window.0).collect();
+    fn level_among(&self, share: f64, is_counted: impl Fn(&Window) -> bool) -> f64 {
+        let windows = (0..self.windows.len()).map(|index| self.window(index));
+        let mut levels: Vec<f64> = windows.filter(is_counted).map(|window| window.level).collect();
         if levels.is_empty() {
             return 0.0;
         }
@@ -239,8 +281,7 @@ impl Levels {
     }
 }
 
-fn fourth_difference(poses: &[Rotor], key: usize, lag: usize) -> f64 {
-    let [a, b, c, d, e] = [key - 2 * lag, key - lag, key, key + lag, key + 2 * lag].map(|key| poses[key]);
+fn fourth_difference([a, b, c, d, e]: [Rotor; 5]) -> f64 {
     let part = |a: f64, b: f64, c: f64, d: f64, e: f64| a + e - 4.0 * (b + d) + 6.0 * c;
     let parts = [
         part(a.s, b.s, c.s, d.s, e.s),
@@ -253,17 +294,20 @@ fn fourth_difference(poses: &[Rotor], key: usize, lag: usize) -> f64 {
 }
 
 /// The same at twice the distance, for the keys of a window that have such.
-fn twice(row: &Row, lag: usize, keys: Range<usize>) -> Vec<f64> {
+fn twice(row: &Row<'_>, lag: usize, keys: Range<usize>) -> Vec<f64> {
     let inside = keys.start.max(4 * lag)..keys.end.min(row.len() - 4 * lag);
     // What is not evenly spaced tells nothing.
     inside.map(|key| row.noise(key, 2 * lag)).filter(|noise| *noise > 0.0).collect()
 }
 
 fn middle(values: &[f64]) -> f64 {
+    middle_of(values.to_vec())
+}
+
+fn middle_of(mut values: Vec<f64>) -> f64 {
     if values.is_empty() {
         return f64::INFINITY;
     }
-    let mut values = values.to_vec();
     let rank = values.len() / 2;
     *values.select_nth_unstable_by(rank, f64::total_cmp).1
 }
@@ -280,36 +324,37 @@ struct Span {
     clarity: f64,
 }
 
-fn spans(scan: &Scan<'_>, row: &Row, levels: &Levels) -> Vec<Span> {
+fn spans(scan: &Scan<'_>, row: &Row<'_>, levels: &Levels<'_>) -> Vec<Span> {
     let step_secs = row.step_secs;
     // Most joints have nothing that could be seen.
-    if levels.windows.iter().all(|(level, growth)| *level < LEAST_RAD || *growth > MOST_GROWTH_IN_WINDOW) {
+    if levels.loud_windows().all(|(_, window)| window.growth > MOST_GROWTH_IN_WINDOW) {
         return Vec::new();
     }
     let own_quiet = levels.level_of_share(QUIET_SHARE);
-    let mirror = mirror_of(&scan.clip.skeleton, scan.joint)
-        .and_then(|other| Scan::new(scan.clip, other))
-        .and_then(|other| Levels::new(&Row::new(&other)?, levels.lag));
+    let mirror_row =
+        mirror_of(&scan.clip.skeleton, scan.joint).and_then(|other| Row::new(scan.other(other)?));
+    let mirror = mirror_row.as_ref().and_then(|row| Levels::new(row, levels.index));
     let worst_mirrored = mirror.as_ref().map(|mirror| {
-        let trembles = |(level, growth): &(f64, f64)| {
-            step_secs <= FINE_SECS && *level >= LEAST_RAD && *growth <= MOST_GROWTH
+        let trembles = |window: &Window| {
+            step_secs <= FINE_SECS && window.level >= LEAST_RAD && window.growth <= MOST_GROWTH
         };
         mirror.level_among(WORST_SHARE, |window| !trembles(window))
     });
     let within = |least: f64| -> Vec<Span> {
-        let trembles = |(level, growth): &(f64, f64)| *level >= least && *growth <= MOST_GROWTH_IN_WINDOW;
+        let is_loud = |index: usize| levels.loud_window(index, least);
         let mut found = Vec::new();
         let mut index = 0;
         while index < levels.windows.len() {
-            if !trembles(&levels.windows[index]) {
+            let trembles = is_loud(index).is_some_and(|window| window.growth <= MOST_GROWTH_IN_WINDOW);
+            if !trembles {
                 index += 1;
                 continue;
             }
             let start = index;
             // A window between two that tremble belongs to them.
             while index < levels.windows.len()
-                && (levels.windows[index].0 >= least
-                    || levels.windows.get(index + 1).is_some_and(|next| next.0 >= least))
+                && (is_loud(index).is_some()
+                    || (index + 1 < levels.windows.len() && is_loud(index + 1).is_some()))
             {
                 index += 1;
             }
@@ -354,20 +399,18 @@ fn level_of_all(scan: &Scan<'_>, lag: usize) -> f64 {
         .listed()
         .filter(|other| *other != scan.joint)
         .filter_map(|other| {
-            let other = Scan::new(scan.clip, other)?;
-            let count = other.track.keys.len();
+            let other = scan.other(other)?;
+            let count = other.keys.len();
             if count < 8 * lag + WINDOW_KEYS {
                 return None;
             }
             let stride = (count / SAMPLED).max(1);
-            let own = |key: usize| other.track.keys[key];
+            let own = |key: usize| other.keys[key];
             let each: Vec<f64> = (2 * lag..count - 2 * lag)
                 .step_by(stride)
                 .map(|key| {
                     let near = own(key);
-                    let five: [Rotor; 5] =
-                        std::array::from_fn(|i| own(key + i * lag - 2 * lag).aligned_to(near));
-                    fourth_difference(&five, 2, 1)
+                    fourth_difference(std::array::from_fn(|i| own(key + i * lag - 2 * lag).aligned_to(near)))
                 })
                 .filter(|level| level.is_finite() && *level > 0.0)
                 .collect();
@@ -378,34 +421,41 @@ fn level_of_all(scan: &Scan<'_>, lag: usize) -> f64 {
 }
 
 /// The keys of a row of windows that tremble, from the first to the last whose difference shows it.
-fn fitted(levels: &Levels, row: &Row, (start, end): (usize, usize), least: f64, quiet: f64) -> Option<Span> {
-    let count = levels.each.len();
+fn fitted(
+    levels: &Levels<'_>,
+    row: &Row<'_>,
+    (start, end): (usize, usize),
+    least: f64,
+    quiet: f64,
+) -> Option<Span> {
+    let count = levels.len();
     let (from, to) = (start * levels.hop, ((end + 2) * levels.hop).min(count));
     // Half the middle level is seldom missed by noise and seldom reached without.
-    let level = middle(&levels.each[from.max(2 * levels.lag)..to.min(count - 2 * levels.lag).max(from + 1)]);
+    let within = from.max(2 * levels.lag)..to.min(count - 2 * levels.lag).max(from + 1);
+    let level = middle_of(levels.within(within)?);
     let shows =
-        |key: &usize| levels.each[*key] >= (0.5 * level).max(0.5 * least).max(2.0 * quiet.min(least / 4.0));
+        |key: &usize| levels.at(*key) >= (0.5 * level).max(0.5 * least).max(2.0 * quiet.min(least / 4.0));
     let (low, high) = (from.saturating_sub(levels.hop), (to + levels.hop).min(count));
     let (first, last) = (first_of_run(levels, low..high, &shows)?, last_of_run(levels, low..high, &shows)?);
     // The difference shows the noise of the next key too.
     let first = if first <= 2 * levels.lag { 0 } else { first + levels.lag };
     let last = if last + 2 * levels.lag + 1 >= count { count - 1 } else { last.saturating_sub(levels.lag) };
     let inside = first.max(2 * levels.lag)..(last + 1).min(count - 2 * levels.lag);
-    let noise = middle(levels.each.get(inside.clone())?);
-    let growth = middle(&twice(row, levels.lag, inside)) / noise;
+    let noise = middle_of(levels.within(inside.clone())?);
+    let growth = middle_of(twice(row, levels.lag, inside)) / noise;
     let most = if last < first + FEW_KEYS { MOST_GROWTH_IN_FEW } else { MOST_GROWTH };
     let is_noise = first < last && noise >= 0.8 * least && growth <= most;
     is_noise.then_some(Span { first, last, noise, quiet, clarity: noise / least })
 }
 
 /// The first key that shows noise, with another soon after.
-fn first_of_run(levels: &Levels, keys: Range<usize>, shows: &impl Fn(&usize) -> bool) -> Option<usize> {
+fn first_of_run(levels: &Levels<'_>, keys: Range<usize>, shows: &impl Fn(&usize) -> bool) -> Option<usize> {
     let shown: Vec<usize> = keys.filter(shows).collect();
     let near = 2 * levels.lag + 1;
     shown.windows(3).find(|three| three[2] - three[0] <= 2 * near).map(|three| three[0])
 }
 
-fn last_of_run(levels: &Levels, keys: Range<usize>, shows: &impl Fn(&usize) -> bool) -> Option<usize> {
+fn last_of_run(levels: &Levels<'_>, keys: Range<usize>, shows: &impl Fn(&usize) -> bool) -> Option<usize> {
     let shown: Vec<usize> = keys.filter(shows).collect();
     let near = 2 * levels.lag + 1;
     shown.windows(3).rev().find(|three| three[2] - three[0] <= 2 * near).map(|three| three[2])
@@ -414,7 +464,7 @@ fn last_of_run(levels: &Levels, keys: Range<usize>, shows: &impl Fn(&usize) -> b
 /// From this clarity on a span may be mended unasked.
 const SAFE_CLARITY: f64 = 1.0;
 
-fn snag(scan: &Scan<'_>, levels: &Levels, span: Span) -> Snag {
+fn snag(scan: &Scan<'_>, levels: &Levels<'_>, span: Span) -> Snag {
     scan.snag(Finding {
         kind: SnagKind::Jitter,
         keys: (span.first, span.last),

@@ -15,8 +15,9 @@ use std::ops::Range;
 use crate::rotor::Rotor;
 
 use super::super::mirror::mirror_of;
+use super::super::poses::Poses;
 use super::super::scan::Scan;
-use super::{Levels, MIDDLE, Row, Span, first_of_run, last_of_run, level_of_all, middle};
+use super::{Levels, MIDDLE, Row, Span, first_of_run, last_of_run, level_of_all, middle, middle_of};
 
 /// Windows are so many keys wide; what holds in them: neighbouring fourth differences go along by at most this, growth
 /// to twice the distance is at most that, and so much of it at most is what a joint near by does.
@@ -74,10 +75,15 @@ fn dot(a: Parts, b: Parts) -> f64 {
 }
 
 /// A weighted sum of poses around a key, as radians.
-fn difference<const N: usize>(poses: &[Rotor], key: usize, weights: [f64; N], length: f64) -> Parts {
+fn difference<const N: usize>(
+    pose: impl Fn(usize) -> Rotor,
+    key: usize,
+    weights: [f64; N],
+    length: f64,
+) -> Parts {
     let mut sum = [0.0; 4];
     for (i, weight) in weights.iter().enumerate() {
-        for (sum, own) in sum.iter_mut().zip(parts(poses[key + i - N / 2])) {
+        for (sum, own) in sum.iter_mut().zip(parts(pose(key + i - N / 2))) {
             *sum += weight * own;
         }
     }
@@ -85,12 +91,12 @@ fn difference<const N: usize>(poses: &[Rotor], key: usize, weights: [f64; N], le
     sum.map(|own| 2.0 * own / length)
 }
 
-fn fourth(poses: &[Rotor], key: usize) -> Parts {
-    difference(poses, key, [1.0, -4.0, 6.0, -4.0, 1.0], super::FOURTH)
+fn fourth(pose: impl Fn(usize) -> Rotor, key: usize) -> Parts {
+    difference(pose, key, [1.0, -4.0, 6.0, -4.0, 1.0], super::FOURTH)
 }
 
-fn sixth_level(poses: &[Rotor], key: usize) -> f64 {
-    let own = difference(poses, key, [1.0, -6.0, 15.0, -20.0, 15.0, -6.0, 1.0], SIXTH);
+fn sixth_level(poses: &Poses<'_>, key: usize) -> f64 {
+    let own = difference(|key| poses.at(key), key, [1.0, -6.0, 15.0, -20.0, 15.0, -6.0, 1.0], SIXTH);
     dot(own, own).sqrt() / MIDDLE
 }
 
@@ -104,7 +110,7 @@ struct Window {
 }
 
 /// Spans of white noise in the keys around `where_loud`.
-pub(super) fn find(scan: &Scan<'_>, row: &Row, levels: &Levels, loud: &[Range<usize>]) -> Vec<Span> {
+pub(super) fn find(scan: &Scan<'_>, row: &Row<'_>, levels: &Levels<'_>, loud: &[Range<usize>]) -> Vec<Span> {
     let mut judge = Judge { scan, row, levels, quiet: None, all: None, mirror: OnceCell::new() };
     let mut hit = vec![false; row.len()];
     let mut any = false;
@@ -126,8 +132,8 @@ pub(super) fn find(scan: &Scan<'_>, row: &Row, levels: &Levels, loud: &[Range<us
 
 struct Judge<'a> {
     scan: &'a Scan<'a>,
-    row: &'a Row,
-    levels: &'a Levels,
+    row: &'a Row<'a>,
+    levels: &'a Levels<'a>,
     /// Worked out when first asked for.
     quiet: Option<f64>,
     all: Option<f64>,
@@ -143,16 +149,17 @@ impl Judge<'_> {
             return None;
         }
         // Unevenly spaced poses have a level of 0.
-        let fourth_level = middle(&self.levels.each[inside.clone()]);
-        if fourth_level < LEAST_RAD || self.levels.each[inside.clone()].contains(&0.0) {
+        let each = self.levels.within(inside.clone())?;
+        let fourth_level = middle(&each);
+        if fourth_level < LEAST_RAD || each.contains(&0.0) {
             return None;
         }
         let sixths: Vec<f64> = inside.clone().map(|key| sixth_level(poses, key)).collect();
-        let sixth_level = middle(&sixths);
+        let sixth_level = middle_of(sixths);
         if sixth_level < LEAST_RAD || !SIXTH_BESIDE_FOURTH.contains(&(sixth_level / fourth_level)) {
             return None;
         }
-        let fourths: Vec<Parts> = inside.clone().map(|key| fourth(poses, key)).collect();
+        let fourths: Vec<Parts> = inside.clone().map(|key| fourth(|key| poses.at(key), key)).collect();
         let energy: f64 = fourths.iter().map(|own| dot(*own, *own)).sum();
         let along = fourths.windows(2).map(|two| dot(two[0], two[1])).sum::<f64>() / energy;
         if along > most_along {
@@ -164,7 +171,7 @@ impl Judge<'_> {
             .map(|key| self.row.noise(key, 2))
             .filter(|noise| *noise > 0.0)
             .collect();
-        if wide.len() >= 3 && middle(&wide) > most_growth * fourth_level {
+        if wide.len() >= 3 && middle_of(wide) > most_growth * fourth_level {
             return None;
         }
         Some(Window { keys: inside, level: fourth_level.min(sixth_level), fourths, energy })
@@ -198,8 +205,8 @@ impl Judge<'_> {
     fn mirror(&self) -> Option<f64> {
         let scan = self.scan;
         *self.mirror.get_or_init(|| {
-            let other = Scan::new(scan.clip, mirror_of(&scan.clip.skeleton, scan.joint)?)?;
-            let row = Row::new(&other).filter(|row| row.len() >= 16)?;
+            let other = scan.other(mirror_of(&scan.clip.skeleton, scan.joint)?)?;
+            let row = Row::new(other).filter(|row| row.len() >= 16)?;
             Some(level_of_share(&row.poses, 1.0))
         })
     }
@@ -213,7 +220,7 @@ impl Judge<'_> {
         let below = skeleton.children(joint).iter().copied();
         let below = below.clone().chain(below.flat_map(|child| skeleton.children(child).iter().copied()));
         let near = above.chain(below).chain(mirror_of(skeleton, joint));
-        near.filter_map(|other| Scan::new(self.scan.clip, other))
+        near.filter_map(|other| self.scan.other(other))
             .filter(|other| other.track.times == self.scan.track.times)
             .map(|other| Self::share_of(window, &other))
             .fold(0.0, f64::max)
@@ -228,7 +235,7 @@ impl Judge<'_> {
                 before
             })
             .collect();
-        let rows: Vec<Parts> = (2..poses.len() - 2).map(|key| fourth(&poses, key)).collect();
+        let rows: Vec<Parts> = (2..poses.len() - 2).map(|key| fourth(|key| poses[key], key)).collect();
         let (along, _) = directions(&rows);
         let signal: Vec<f64> = rows.iter().map(|own| dot(*own, along)).collect();
         let length = signal.iter().map(|own| own * own).sum::<f64>();
@@ -245,7 +252,7 @@ impl Judge<'_> {
     /// Runs of keys that were hit, fitted to where the noise shows.
     fn spans(&mut self, hit: &[bool]) -> Vec<Span> {
         let count = hit.len();
-        let each = &self.levels.each;
+        let levels = self.levels;
         let quiet = self.quiet();
         let mut spans: Vec<Span> = Vec::new();
         let mut key = 0;
@@ -259,9 +266,11 @@ impl Judge<'_> {
                 high += 1;
             }
             // Wide windows reach beyond the noise, so not the middle.
-            let level = usual_loud(&each[low.max(2)..(high + 1).min(count - 2)]);
+            let inside = low.max(2)..(high + 1).min(count - 2);
+            let level = usual_loud(&inside.map(|key| levels.at(key)).collect::<Vec<_>>());
             // On as long as it trembles.
-            let goes_on = |keys: Range<usize>| middle(&each[keys]) >= 0.5 * level;
+            let goes_on =
+                |keys: Range<usize>| levels.within(keys).is_some_and(|each| middle_of(each) >= 0.5 * level);
             while low >= 2 + ON_KEYS && goes_on(low - ON_KEYS..low) {
                 low -= 1;
             }
@@ -284,8 +293,8 @@ impl Judge<'_> {
     }
 
     fn fitted(&self, keys: Range<usize>, level: f64, quiet: f64) -> Option<Span> {
-        let (count, each) = (self.row.len(), &self.levels.each);
-        let shows = |key: &usize| each[*key] >= 0.5 * level;
+        let count = self.row.len();
+        let shows = |key: &usize| self.levels.at(*key) >= 0.5 * level;
         let first = first_of_run(self.levels, keys.clone(), &shows)?;
         let last = last_of_run(self.levels, keys, &shows)?;
         // The difference shows the noise of the next key too.
@@ -294,7 +303,7 @@ impl Judge<'_> {
         if last + 1 < first + SHORTEST {
             return None;
         }
-        let noise = middle(each.get(first.max(2)..(last + 1).min(count - 2))?);
+        let noise = middle_of(self.levels.within(first.max(2)..(last + 1).min(count - 2))?);
         let least = LEAST_RAD.max(TIMES_QUIET * quiet.min(noise / TIMES_QUIET));
         if noise < LEAST_SHARE * least {
             return None;
@@ -315,7 +324,7 @@ pub(super) fn usual_loud(levels: &[f64]) -> f64 {
 }
 
 /// The level of sixth differences that a share of the windows stays below.
-fn level_of_share(poses: &[Rotor], share: f64) -> f64 {
+fn level_of_share(poses: &Poses<'_>, share: f64) -> f64 {
     const WIDTH: usize = 8;
     /// Windows that are looked at.
     const SAMPLED: usize = 600;
@@ -325,7 +334,7 @@ fn level_of_share(poses: &[Rotor], share: f64) -> f64 {
         .filter_map(|start| {
             let keys = (start + 1).max(3)..(start + WIDTH - 1).min(poses.len() - 3);
             let own: Vec<f64> = keys.map(|key| sixth_level(poses, key)).collect();
-            (own.len() >= 4).then(|| middle(&own))
+            (own.len() >= 4).then(|| middle_of(own))
         })
         .collect();
     if levels.is_empty() {

@@ -55,15 +55,17 @@ const CLEAR_GAIN: f64 = 3.3;
 /// A joint's roughness, and that of the joint on its other side, worked out when first asked for.
 pub(super) struct Alike<'a> {
     scan: &'a Scan<'a>,
-    rough: &'a Roughness,
+    rough: &'a Roughness<'a>,
     is_coarse: bool,
-    mirror: OnceCell<Option<Roughness>>,
+    mirror: OnceCell<Option<Mirror<'a>>>,
+    /// For each key the largest roughness of the keys up to it, and of those from it on.
+    roughest: OnceCell<[Vec<f64>; 2]>,
 }
 
 impl<'a> Alike<'a> {
-    pub(super) fn new(scan: &'a Scan<'a>, rough: &'a Roughness) -> Self {
-        let is_coarse = scan.track.times.median_step().is_some_and(|step_secs| step_secs > FINE_SECS);
-        Self { scan, rough, is_coarse, mirror: OnceCell::new() }
+    pub(super) fn new(scan: &'a Scan<'a>, rough: &'a Roughness<'a>) -> Self {
+        let is_coarse = scan.outline().step_secs().is_some_and(|step_secs| step_secs > FINE_SECS);
+        Self { scan, rough, is_coarse, mirror: OnceCell::new(), roughest: OnceCell::new() }
     }
 
     /// How sure it is that `run` is a spike because the joint moves like that nowhere else, and the other side neither.
@@ -83,24 +85,51 @@ impl<'a> Alike<'a> {
         if score < LEAST_SCORE || gain < LEAST_GAIN {
             return None;
         }
-        let beside = |key: usize| key + 3 >= run.first && key <= run.last + 3;
-        let elsewhere = (1..rough.len() - 1)
-            .filter(|key| !beside(*key))
-            .map(|key| rough.residual[key])
-            .fold(0.0, f64::max);
+        let elsewhere = self.roughest_beside(run);
         let mirror = self.mirror.get_or_init(|| {
-            let other = Scan::new(scan.clip, mirror_of(&scan.clip.skeleton, scan.joint)?)?;
-            Roughness::new(&other, LEAST_KEYS)
+            let other = scan.other(mirror_of(&scan.clip.skeleton, scan.joint)?)?;
+            Roughness::new(other, LEAST_KEYS).map(Mirror::new)
         });
         let is_alone = match mirror {
             None => gain >= LEAST_GAIN_ALONE && run.peak >= TIMES_ELSEWHERE_ALONE * elsewhere,
             Some(mirror) => {
-                let worst = mirror.residual.iter().copied().fold(0.0, f64::max);
                 run.peak >= TIMES_ELSEWHERE * elsewhere
-                    && (run.peak >= TIMES_MIRROR * worst || !is_done(rough, run, mirror))
+                    && (run.peak >= TIMES_MIRROR * mirror.worst || !is_done(rough, run, &mirror.rough))
             }
         };
         is_alone.then_some(if gain >= CLEAR_GAIN { CONFIDENCE_CLEAR } else { CONFIDENCE })
+    }
+}
+
+impl Alike<'_> {
+    /// The largest roughness of the joint, a run and the keys next to it left out.
+    fn roughest_beside(&self, run: Run) -> f64 {
+        let [before, after] = self.roughest.get_or_init(|| {
+            let each: Vec<f64> = (0..self.rough.len()).map(|key| self.rough.residual(key)).collect();
+            let largest = |so_far: &mut f64, own: &f64| {
+                *so_far = so_far.max(*own);
+                Some(*so_far)
+            };
+            let mut after: Vec<f64> = each.iter().rev().scan(0.0, largest).collect();
+            after.reverse();
+            [each.iter().scan(0.0, largest).collect(), after]
+        });
+        let from_start = run.first.checked_sub(4).map_or(0.0, |key| before[key]);
+        from_start.max(after.get(run.last + 4).copied().unwrap_or(0.0))
+    }
+}
+
+/// The joint on the other side.
+struct Mirror<'a> {
+    rough: Roughness<'a>,
+    /// Its largest roughness.
+    worst: f64,
+}
+
+impl<'a> Mirror<'a> {
+    fn new(rough: Roughness<'a>) -> Self {
+        let worst = (0..rough.len()).map(|key| rough.residual(key)).fold(0.0, f64::max);
+        Self { rough, worst }
     }
 }
 
@@ -111,12 +140,14 @@ fn is_swing(run: Run) -> bool {
 }
 
 /// Whether another joint does what this one does around a run, at any time.
-fn is_done(rough: &Roughness, run: Run, other: &Roughness) -> bool {
+fn is_done(rough: &Roughness<'_>, run: Run, other: &Roughness<'_>) -> bool {
     let keys = run.first - BESIDE..(run.last + BESIDE + 1).min(rough.len());
-    let wanted = shape(&rough.poses[keys.clone()]);
-    let Some(last) = other.len().checked_sub(keys.len()) else { return false };
+    let count = keys.len();
+    let wanted = shape(&keys.map(|key| rough.pose(key)).collect::<Vec<_>>());
+    let Some(last) = other.len().checked_sub(count) else { return false };
+    let others: Vec<Rotor> = (0..other.len()).map(|key| other.pose(key)).collect();
     (0..=last).any(|start| {
-        let own = shape(&other.poses[start..start + keys.len()]);
+        let own = shape(&others[start..start + count]);
         let apart: f64 = own.iter().zip(&wanted).map(|(a, b)| (a - b).abs()).sum();
         apart < ALIKE_SHARE * run.peak * wanted.len() as f64
     })

@@ -29,20 +29,20 @@ const LEAST_MOVE_RAD: f64 = 1e-4;
 pub(super) const CONFIDENCE: f64 = 0.55;
 
 /// The runs at the ends of a joint's keys that lie off where the motion beside them leads to.
-pub(super) fn find<'a>(scan: &'a Scan<'a>, rough: &'a Roughness) -> impl Iterator<Item = Run> + 'a {
+pub(super) fn find<'a>(scan: &'a Scan<'a>, rough: &'a Roughness<'a>) -> impl Iterator<Item = Run> + 'a {
     [true, false]
         .into_iter()
         .filter_map(move |at_start| (1..=LONGEST).find_map(|length| off(scan, rough, at_start, length)))
 }
 
-fn off(scan: &Scan<'_>, rough: &Roughness, at_start: bool, length: usize) -> Option<Run> {
+fn off(scan: &Scan<'_>, rough: &Roughness<'_>, at_start: bool, length: usize) -> Option<Run> {
     let count = rough.len();
     if count < NEAR_KEYS + length + 2 {
         return None;
     }
     // Counted from the end inwards.
     let key = |i: usize| if at_start { i } else { count - 1 - i };
-    let pose = |i: usize| rough.poses[key(i)];
+    let pose = |i: usize| rough.pose(key(i));
     let turn = |i: usize, j: usize| angle_of_dot(pose(i).dot(pose(j)));
     let near = length + 1..length + NEAR_KEYS;
     let mut steps: Vec<f64> = near.clone().map(|i| turn(i, i + 1)).collect();
@@ -58,11 +58,11 @@ fn off(scan: &Scan<'_>, rough: &Roughness, at_start: bool, length: usize) -> Opt
     let mut offs: Vec<f64> = (0..length).map(distance).collect();
     offs.sort_by(f64::total_cmp);
     let (weakest, size) = (offs[0], offs[length / 2]);
-    let roughest = near.map(|i| rough.residual[key(i)]).fold(0.0, f64::max);
+    let roughest = near.map(|i| rough.residual(key(i))).fold(0.0, f64::max);
     let sure = LEAST_RAD.max(TIMES_ROUGH * roughest).max(TIMES_STEP * usual);
     let (first, last) = (key(0).min(key(length - 1)), key(0).max(key(length - 1)));
     let moves = (first.saturating_sub(1)..=last.min(count - 2)).all(|key| scan.moves_after(key));
-    if weakest < sure || !moves || may_be_meant(scan, rough.secs[key(length)], rough.secs[key(length - 1)]) {
+    if weakest < sure || !moves || may_be_meant(scan, rough.secs(key(length)), rough.secs(key(length - 1))) {
         return None;
     }
     Some(Run { first, last, size, weakest, peak: size, rest: roughest, across: size })
@@ -73,7 +73,7 @@ fn off(scan: &Scan<'_>, rough: &Roughness, at_start: bool, length: usize) -> Opt
 fn may_be_meant(scan: &Scan<'_>, from: f64, to: f64) -> bool {
     let mut moves_on = false;
     for other in scan.clip.skeleton.listed().filter(|other| *other != scan.joint) {
-        let Some(other) = Scan::new(scan.clip, other).filter(|other| other.track.keys.len() > 4) else {
+        let Some(other) = scan.other(other).filter(|other| other.keys.len() > 4) else {
             continue;
         };
         let track = other.track;
