@@ -280,13 +280,13 @@ pub(super) struct ConvertArgs {
     #[arg(short, long, value_name = "OUT")]
     pub(super) output: PathBuf,
     /// Frames per second to resample at
-    #[arg(long, value_name = "FPS")]
+    #[arg(long, value_name = "FPS", allow_negative_numbers = true)]
     pub(super) rate: Option<f64>,
     /// Second at which the part begins
-    #[arg(long, value_name = "S")]
+    #[arg(long, value_name = "S", allow_negative_numbers = true)]
     pub(super) from: Option<f64>,
     /// Second at which the part ends
-    #[arg(long, value_name = "S")]
+    #[arg(long, value_name = "S", allow_negative_numbers = true)]
     pub(super) to: Option<f64>,
     /// Keep as few keys as leave every joint within so many degrees, at all times; into glTF and CSV
     #[arg(long, value_name = "DEG")]
@@ -347,12 +347,20 @@ pub(super) struct CsvArgs {
     /// Unit of the time column of a CSV file: s, ms or us
     #[arg(long, value_name = "UNIT")]
     pub(super) time_unit: Option<TimeUnit>,
+    /// Skeleton of a CSV file that has none: another clip whose joints bear the same names, or a table joint,parent,offset.x,offset.y,offset.z
+    #[arg(long, value_name = "FILE")]
+    pub(super) skeleton: Option<PathBuf>,
 }
 
 impl CsvArgs {
     /// For opening files.
     pub(super) fn open_options(&self) -> OpenOptions {
-        let csv = CsvOptions { columns: self.columns.clone(), time_unit: self.time_unit, hierarchy: None };
+        let csv = CsvOptions {
+            columns: self.columns.clone(),
+            time_unit: self.time_unit,
+            hierarchy: None,
+            skeleton: self.skeleton.clone(),
+        };
         OpenOptions { csv, rest: None }
     }
 }

@@ -1,6 +1,6 @@
 //! A file's angles to turns, many rows at a time.
 
-use crate::rotor::batch::{self, Level, Streams};
+use crate::rotor::batch::{self, Level, Parts, Streams};
 use crate::rotor::{Axis, EulerOrder, Rotor};
 
 use super::degrees::{Degrees, GrowingDegrees, give_back};
@@ -91,6 +91,11 @@ impl AngleRows {
         }
     }
 
+    /// Bytes that a row takes more once the track is played at many times.
+    pub fn playing_bytes(&self) -> usize {
+        if self.makes_rotors() { size_of::<Rotor>() } else { 2 * size_of::<Rotor>() }
+    }
+
     /// The track, with slerp between; `times` has as many keys as there are rows.
     pub fn finish(self, times: Times) -> RotationTrack {
         let makes_rotors = self.makes_rotors();
@@ -109,6 +114,45 @@ impl AngleRows {
     }
 }
 
+/// The rotor of a triple in degrees, as [`rotors`] makes it but for its sign.
+pub(super) fn rotor(order: EulerOrder, degrees: [f64; 3]) -> Rotor {
+    let radians = degrees.map(f64::to_radians);
+    let mut parts = [0.0; 4];
+    let out = parts.each_mut().map(std::slice::from_mut);
+    batch::euler_rotors(Level::best(), order, radians.each_ref().map(std::slice::from_ref), out);
+    let [s, yz, zx, xy] = parts;
+    Rotor::new(s, yz, zx, xy)
+}
+
+/// Which rotors of a file's angles take the other sign to be near the last finite one before: a bit for each.
+#[derive(Debug)]
+pub(super) struct Signs(Vec<u64>);
+
+impl Signs {
+    pub(super) fn of(order: EulerOrder, degrees: &Degrees) -> Self {
+        let (mut before, mut scratch) = (NO_ROTOR, AngleScratch::default());
+        let mut tile = Vec::with_capacity(TILE);
+        let mut words = Vec::with_capacity(degrees.len().div_ceil(TILE));
+        for start in (0..degrees.len()).step_by(TILE) {
+            tile.clear();
+            tile.extend((start..degrees.len().min(start + TILE)).map(|key| degrees.triple(key)));
+            let mut word = 0_u64;
+            let rotors = rotors_of(order, &tile, &mut scratch);
+            for index in 0..tile.len() {
+                word |= u64::from(sign_near(rotor_at(rotors, index), &mut before) < 0.0) << index;
+            }
+            words.push(word);
+        }
+        Self(words)
+    }
+
+    /// 1 or −1.
+    pub(super) fn of_key(&self, key: usize) -> f64 {
+        let word = self.0.get(key / TILE).copied().unwrap_or_default();
+        if word >> (key % TILE) & 1 == 1 { -1.0 } else { 1.0 }
+    }
+}
+
 /// The rotors of a file's angles, each with the sign that is near the last finite one before it.
 pub(super) fn rotors(order: EulerOrder, degrees: &Degrees) -> Vec<Rotor> {
     let (mut rows, mut scratch) = (RotorRows::new(order), AngleScratch::default());
@@ -122,17 +166,54 @@ pub(super) fn rotors(order: EulerOrder, degrees: &Degrees) -> Vec<Rotor> {
     rows.finish()
 }
 
+/// The rotors of at most [`TILE`] triples in degrees.
+fn rotors_of<'s>(
+    order: EulerOrder,
+    degrees: &[[f64; 3]],
+    scratch: &'s mut AngleScratch,
+) -> Parts<'s, f64, 4> {
+    let length = degrees.len();
+    let [first, second, third] = scratch.radians.parts_mut().map(|stream| &mut stream[..length]);
+    for (index, angles) in degrees.iter().enumerate() {
+        first[index] = angles[0].to_radians();
+        second[index] = angles[1].to_radians();
+        third[index] = angles[2].to_radians();
+    }
+    let radians = scratch.radians.parts().map(|stream| &stream[..length]);
+    let rotors = scratch.rotors.parts_mut().map(|stream| &mut stream[..length]);
+    batch::euler_rotors(scratch.level, order, radians, rotors);
+    scratch.rotors.parts().map(|stream| &stream[..length])
+}
+
+fn rotor_at([s, yz, zx, xy]: Parts<'_, f64, 4>, index: usize) -> Rotor {
+    Rotor::new(s[index], yz[index], zx[index], xy[index])
+}
+
+/// The last finite rotor as it was made, and the sign it took to be near the one before it.
+type Before = (Rotor, f64);
+
+const NO_ROTOR: Before = (Rotor::IDENTITY, 1.0);
+
+/// Rotors made of angles have no sign of their own: each takes the one near the last finite one before it.
+fn sign_near(rotor: Rotor, before: &mut Before) -> f64 {
+    let (reference, sign) = *before;
+    let own = if sign * rotor.dot(reference) < 0.0 { -1.0 } else { 1.0 };
+    if rotor.is_finite() {
+        *before = (rotor, own);
+    }
+    own
+}
+
 #[derive(Clone, Debug)]
 struct RotorRows {
     order: EulerOrder,
     keys: Vec<Rotor>,
-    /// The last finite rotor as it was made, and the sign it took to be near the one before it.
-    before: (Rotor, f64),
+    before: Before,
 }
 
 impl RotorRows {
     fn new(order: EulerOrder) -> Self {
-        Self { order, keys: Vec::new(), before: (Rotor::IDENTITY, 1.0) }
+        Self { order, keys: Vec::new(), before: NO_ROTOR }
     }
 
     fn reserve(&mut self, capacity: usize) {
@@ -141,28 +222,13 @@ impl RotorRows {
 
     /// Adds at most [`TILE`] rows.
     fn push(&mut self, degrees: &[[f64; 3]], scratch: &mut AngleScratch) {
-        let length = degrees.len();
-        let [first, second, third] = scratch.radians.parts_mut().map(|stream| &mut stream[..length]);
-        for (index, angles) in degrees.iter().enumerate() {
-            first[index] = angles[0].to_radians();
-            second[index] = angles[1].to_radians();
-            third[index] = angles[2].to_radians();
-        }
-        let radians = scratch.radians.parts().map(|stream| &stream[..length]);
-        let rotors = scratch.rotors.parts_mut().map(|stream| &mut stream[..length]);
-        batch::euler_rotors(scratch.level, self.order, radians, rotors);
-        let [s, yz, zx, xy] = scratch.rotors.parts().map(|stream| &stream[..length]);
-        let (mut reference, mut sign) = self.before;
-        self.keys.extend((0..length).map(|index| {
-            let rotor = Rotor::new(s[index], yz[index], zx[index], xy[index]);
-            // Rotors made of angles have no sign of their own: each takes the one near the last finite one before it.
-            let own_sign = if sign * rotor.dot(reference) < 0.0 { -1.0 } else { 1.0 };
-            if rotor.is_finite() {
-                (reference, sign) = (rotor, own_sign);
-            }
-            rotor.scale(own_sign)
+        let rotors = rotors_of(self.order, degrees, scratch);
+        let mut before = self.before;
+        self.keys.extend((0..degrees.len()).map(|index| {
+            let rotor = rotor_at(rotors, index);
+            rotor.scale(sign_near(rotor, &mut before))
         }));
-        self.before = (reference, sign);
+        self.before = before;
     }
 
     fn finish(mut self) -> Vec<Rotor> {

@@ -98,7 +98,9 @@ impl RotationTrack {
     pub(super) fn sound_for(&self, times: usize) -> Option<&Streams<f64, 4>> {
         /// Who asks for so many asks again.
         const MANY: usize = 128;
-        if times >= MANY || 4 * times > self.keys.len() {
+        if self.keys.is_lean() {
+            self.keys.sound_if_made()
+        } else if times >= MANY || 4 * times > self.keys.len() {
             Some(self.keys.sound())
         } else {
             self.keys.sound_if_made()

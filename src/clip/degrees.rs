@@ -52,7 +52,7 @@ impl Degrees {
     ///
     /// # Panics
     /// When the key does not exist.
-    pub(super) fn triple(&self, key: usize) -> [f64; 3] {
+    pub fn triple(&self, key: usize) -> [f64; 3] {
         match &self.0.held {
             Held::Triples(triples) => triples[key],
             Held::Whole { axes, numbers } => {

@@ -26,6 +26,7 @@ mod short_steps;
 mod smooth;
 mod take;
 mod times;
+mod vector_keys;
 mod vector_track;
 mod worlds;
 
@@ -55,5 +56,6 @@ pub use short_steps::{ShortSteps, with_short_steps};
 pub use smooth::{Kernel, Smoothing, partly};
 pub use take::{Clip, FrameGrid, JointTracks};
 pub use times::{Place, Times};
+pub use vector_keys::{FewAxesRows, VectorKeys};
 pub use vector_track::{VectorPath, VectorTrack};
 pub use worlds::Worlds;

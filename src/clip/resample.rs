@@ -13,6 +13,7 @@ use super::path::{PathKind, Paths, Segment, Segments, turn_of_travel};
 use super::rotation_track::{FileAngles, RotationTrack, Stored};
 use super::take::{Clip, FrameGrid, JointTracks};
 use super::times::{Place, Times};
+use super::vector_keys::VectorKeys;
 use super::vector_track::{VectorPath, VectorTrack};
 
 /// Times nearer than this to a frame are that frame, as a share of the step between frames.
@@ -177,7 +178,7 @@ fn rotation_at(track: &RotationTrack, times: &Times, at: &[f64]) -> RotationTrac
 }
 
 fn vectors_at(track: &VectorTrack, times: &Times, at: &[f64]) -> Option<VectorTrack> {
-    let keys: Option<Arc<[DVec3]>> = at.iter().map(|&secs| track.at(secs)).collect();
+    let keys: Option<VectorKeys> = at.iter().map(|&secs| track.at(secs)).collect();
     let path = if track.path == VectorPath::Hold { VectorPath::Hold } else { VectorPath::Straight };
     Some(VectorTrack { times: times.clone(), keys: keys?, path, tangents: None })
 }
@@ -218,7 +219,7 @@ impl Frames<'_> {
 
     fn vectors(&self, track: &VectorTrack) -> Option<VectorTrack> {
         if track.times == *self.all {
-            let keys: Arc<[DVec3]> = track.keys[self.span.clone()].into();
+            let keys: VectorKeys = track.keys[self.span.clone()].into();
             let tangents = track.tangents.as_ref().map(|all| all[self.span.clone()].into());
             return Some(VectorTrack { times: self.kept.clone(), keys, path: track.path, tangents });
         }

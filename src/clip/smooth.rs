@@ -320,7 +320,7 @@ impl VectorTrack {
                 self.keys[key] + way.axis() * share
             })
             .collect();
-        Self { keys, ..self.clone() }
+        Self { keys: keys.into(), ..self.clone() }
     }
 }
 

@@ -5,6 +5,7 @@ use std::sync::Arc;
 use glam::DVec3;
 
 use super::times::{Place, Times};
+use super::vector_keys::VectorKeys;
 
 /// How a vector moves between keys, after glTF's three interpolations.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -23,7 +24,7 @@ pub struct VectorTrack {
     /// Key times in seconds.
     pub times: Times,
     /// A vector for each key.
-    pub keys: Arc<[DVec3]>,
+    pub keys: VectorKeys,
     /// The path between keys.
     pub path: VectorPath,
     /// In- and out-tangent of each key, per second; for [`VectorPath::Cubic`] alone.
@@ -32,7 +33,7 @@ pub struct VectorTrack {
 
 impl VectorTrack {
     /// A track with straight lines between.
-    pub fn straight(times: Times, keys: impl Into<Arc<[DVec3]>>) -> Self {
+    pub fn straight(times: Times, keys: impl Into<VectorKeys>) -> Self {
         Self { times, keys: keys.into(), path: VectorPath::Straight, tangents: None }
     }
 
@@ -59,9 +60,9 @@ impl VectorTrack {
     }
 
     fn sound_key(&self, key: usize) -> Option<DVec3> {
-        let sound = |v: &&DVec3| v.is_finite();
-        let before = || self.keys[..key].iter().rev().find(sound);
-        let after = || self.keys[key..].iter().find(sound);
-        Some(&self.keys[key]).filter(sound).or_else(before).or_else(after).copied()
+        let sound = |key: usize| Some(self.keys.vector(key)).filter(|v| v.is_finite());
+        let before = || (0..key).rev().find_map(sound);
+        let after = || (key + 1..self.keys.len()).find_map(sound);
+        sound(key).or_else(before).or_else(after)
     }
 }

@@ -14,7 +14,9 @@ pub mod limits;
 mod losses;
 mod note;
 pub mod ron;
+mod rows;
 mod source;
+mod text_file;
 mod turns;
 
 pub use address::ClipAddress;

@@ -1,6 +1,7 @@
 //! A file as opened: its clips, and what is needed to give it back with nothing lost.
 
 use std::fmt;
+use std::io;
 use std::path::{Path, PathBuf};
 use std::sync::{Arc, OnceLock};
 
@@ -50,6 +51,33 @@ impl Format {
         })
     }
 
+    /// By the first bytes, where these are surely of one format: told to whoever has given a file a wrong name.
+    fn told_by(bytes: &[u8]) -> Option<Self> {
+        if bytes.starts_with(b"glTF") {
+            return Some(Self::Glb);
+        }
+        let text = bytes.strip_prefix(b"\xEF\xBB\xBF").unwrap_or(bytes).trim_ascii_start();
+        let words = |first: &[u8], second: &[u8]| {
+            let rest = text.get(first.len()..).unwrap_or_default().trim_ascii_start();
+            let begins = |text: &[u8], word: &[u8]| {
+                text.get(..word.len()).is_some_and(|own| own.eq_ignore_ascii_case(word))
+            };
+            begins(text, first) && begins(rest, second)
+        };
+        if words(b"HIERARCHY", b"ROOT") {
+            Some(Self::Bvh)
+        } else if words(b"{", b"\"") {
+            Some(Self::Gltf)
+        } else {
+            None
+        }
+    }
+
+    /// Whether `self` and `other` are read alike: a `.gltf` may be a GLB and the other way round.
+    const fn is_kin_of(self, other: Self) -> bool {
+        self.holds_many() == other.holds_many() && (self.holds_many() || self as u8 == other as u8)
+    }
+
     /// Whether a file of this format may hold several clips.
     pub const fn holds_many(self) -> bool {
         matches!(self, Self::Gltf | Self::Glb)
@@ -82,6 +110,7 @@ impl OpenOptions {
         Reading {
             columns: self.csv.columns.as_ref().map(ToString::to_string),
             time_unit: self.csv.time_unit.map(|unit| unit.name().to_owned()),
+            skeleton: self.csv.skeleton.clone(),
             rest: self.rest,
         }
     }
@@ -96,6 +125,7 @@ impl OpenOptions {
                 columns: self.csv.columns.clone().or(columns),
                 time_unit: self.csv.time_unit.or(time_unit),
                 hierarchy: self.csv.hierarchy.clone(),
+                skeleton: self.csv.skeleton.clone().or_else(|| reading.skeleton.clone()),
             },
             rest: self.rest.or(reading.rest),
         }
@@ -116,6 +146,19 @@ pub enum OpenError {
         /// Its extension.
         found: String,
     },
+    /// The content is of another format than the name says.
+    #[error("{path}: content: expected {expected}, as the name says, found {found}; rename it to end in .{}", .found.extension(), path = path.display())]
+    Content {
+        /// The file.
+        path: PathBuf,
+        /// The format of its name.
+        expected: Format,
+        /// The format of its first bytes.
+        found: Format,
+    },
+    /// A file without joints where a skeleton was looked for.
+    #[error("{path}: skeleton: expected a clip or table with joints, found none; name another file", path = .0.display())]
+    NoSkeleton(PathBuf),
     /// A rest pose that the file does not have.
     #[error("{path}: rest pose: expected {known}, found {choice}; choose one of those", path = path.display())]
     Rest {
@@ -284,13 +327,22 @@ pub fn open(path: &Path, options: &OpenOptions) -> Result<Source, OpenError> {
 /// As [`open`].
 pub fn open_bytes(path: &Path, bytes: Vec<u8>, options: &OpenOptions) -> Result<Source, OpenError> {
     let format = Format::of(path)?;
+    if let Some(found) = Format::told_by(&bytes).filter(|found| !found.is_kin_of(format)) {
+        return Err(OpenError::Content { path: path.to_owned(), expected: format, found });
+    }
     let name = path.file_stem().map(|stem| stem.to_string_lossy().into_owned()).unwrap_or_default();
     let at = || path.to_owned();
     let (origin, clips, notes) = match format {
         Format::Gltf | Format::Glb => {
             let folder = path.parent().unwrap_or(Path::new(""));
-            let fetch =
-                |relative: &str| disk::read(&folder.join(relative)).map_err(|error| error.to_string());
+            let fetch = |relative: &str| {
+                disk::read(&folder.join(relative)).map_err(|error| match error {
+                    disk::DiskError::Io { source, .. } if source.kind() == io::ErrorKind::NotFound => {
+                        "it does not lie there; put it beside the document".to_owned()
+                    }
+                    error => error.to_string(),
+                })
+            };
             let (document, clips, notes) =
                 gltf::read(bytes, &name, &fetch).map_err(|source| OpenError::Gltf { path: at(), source })?;
             (Origin::Gltf(Arc::new(document)), clips, notes)
@@ -301,8 +353,12 @@ pub fn open_bytes(path: &Path, bytes: Vec<u8>, options: &OpenOptions) -> Result<
             (Origin::Bvh(Arc::new(document)), vec![clip], notes)
         }
         Format::Csv => {
-            let companion = options.csv.hierarchy.is_none().then(|| companion_skeleton(path)).flatten();
-            let hierarchy = options.csv.hierarchy.clone().or(companion);
+            let hierarchy = match (&options.csv.hierarchy, &options.csv.skeleton) {
+                (Some(given), _) => Some(given.clone()),
+                _ if csv::has_skeleton(&bytes) => None,
+                (None, Some(named)) => Some(bones_in(named)?),
+                (None, None) => companion_skeleton(path),
+            };
             let csv_options = csv::CsvOptions { hierarchy, ..options.csv.clone() };
             let (document, clip, notes) = csv::read(bytes, &name, &csv_options)
                 .map_err(|source| OpenError::Csv { path: at(), source })?;
@@ -335,9 +391,24 @@ pub fn open_bytes(path: &Path, bytes: Vec<u8>, options: &OpenOptions) -> Result<
     })
 }
 
-/// The skeleton of `NAME_rot.csv` from a `NAME_hierarchy.csv` beside it. One that can't be read is no companion.
+/// The skeleton in a file: that of a clip, or a table of joints.
+fn bones_in(path: &Path) -> Result<Vec<csv::Bone>, OpenError> {
+    if Format::of(path)? == Format::Csv
+        && let Ok(bones) = csv::hierarchy(&disk::read(path)?)
+    {
+        return Ok(bones);
+    }
+    let source = open(path, &OpenOptions::default())?;
+    let skeleton = source.skeleton().filter(|skeleton| !skeleton.is_empty());
+    skeleton.map(|skeleton| csv::bones_of(&skeleton)).ok_or_else(|| OpenError::NoSkeleton(path.to_owned()))
+}
+
+/// The skeleton of `NAME.csv` or `NAME_rot.csv` from a `NAME_hierarchy.csv` beside it. One that can't be read is no companion.
 fn companion_skeleton(path: &Path) -> Option<Vec<csv::Bone>> {
-    let stem = path.file_stem()?.to_str()?.strip_suffix("_rot")?;
-    let bytes = disk::read(&path.with_file_name(format!("{stem}_hierarchy.csv"))).ok()?;
-    csv::hierarchy(&bytes).ok()
+    let stem = path.file_stem()?.to_str()?;
+    let beside = |stem: &str| {
+        let bytes = disk::read(&path.with_file_name(format!("{stem}_hierarchy.csv"))).ok()?;
+        csv::hierarchy(&bytes).ok()
+    };
+    beside(stem).or_else(|| beside(stem.strip_suffix("_rot")?))
 }

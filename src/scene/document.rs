@@ -29,6 +29,8 @@ pub struct Reading {
     pub columns: Option<String>,
     /// The unit of its times: `s`, `ms` or `us`.
     pub time_unit: Option<String>,
+    /// A file that has the skeleton of a CSV file without one.
+    pub skeleton: Option<PathBuf>,
     /// The pose that turns are measured from; by rule where nobody chose.
     pub rest: Option<RestChoice>,
 }

@@ -698,6 +698,37 @@ fn columns_of_another_make_can_be_named() {
     assert!(wrong.stderr.contains("expected s, ms or us, found `hours`"), "{}", wrong.stderr);
 }
 
+#[test]
+fn a_table_takes_its_skeleton_from_another_clip() {
+    let bench = Bench::new();
+    let bvh = "HIERARCHY\nROOT hip { OFFSET 0 0 0 CHANNELS 3 Zrotation Xrotation Yrotation\n\
+        JOINT knee { OFFSET 0 -2 0 CHANNELS 3 Zrotation Xrotation Yrotation\nEnd Site { OFFSET 0 -1 0 } } }\n\
+        MOTION\nFrames: 1\nFrame Time: 0.1\n0 0 0 0 0 0\n";
+    bench.write("figure.bvh", bvh.as_bytes());
+    // A quarter turn of the hip about z takes the knee to the side.
+    bench.write("turns.csv", b"time,hip.z,knee.z\n0,90,0\n1,90,30\n");
+    bench.write("bones.csv", b"joint,parent,offset.x,offset.y,offset.z\nhip,,0,0,0\nknee,hip,0,-2,0\n");
+    let place = |options: &str| {
+        let run = bench.run(&format!("sample turns.csv --world --at 0 {options}")).expect(0);
+        let sample: Value = serde_json::from_str(&run.stdout).unwrap();
+        numbers::<3>(&sample["joints"]["knee"]["position"][0])
+    };
+    assert_close!(place(""), [0.0, 0.0, 0.0], 1e-12);
+    assert_close!(place("--skeleton figure.bvh"), [2.0, 0.0, 0.0], 1e-12);
+    assert_close!(place("--skeleton bones.csv"), [2.0, 0.0, 0.0], 1e-12);
+    // A new file of it has the skeleton, a glTF made of that too; its own lines come first.
+    bench.run("convert turns.csv -o turns.glb --skeleton figure.bvh").expect(0);
+    bench.run("convert turns.glb -o own.csv").expect(0);
+    let run = bench.run("sample own.csv --world --at 0 --skeleton missing.bvh").expect(0);
+    let sample: Value = serde_json::from_str(&run.stdout).unwrap();
+    assert_close!(numbers::<3>(&sample["joints"]["knee"]["position"][0]), [2.0, 0.0, 0.0], 1e-6);
+    let missing = bench.run("sample turns.csv --at 0 --skeleton missing.bvh").expect(2);
+    assert!(missing.stderr.contains("missing.bvh: cannot read"), "{}", missing.stderr);
+    bench.write("empty.gltf", b"{\"asset\":{\"version\":\"2.0\"}}");
+    let empty = bench.run("sample turns.csv --at 0 --skeleton empty.gltf").expect(2);
+    assert!(empty.stderr.contains("expected a clip or table with joints, found none"), "{}", empty.stderr);
+}
+
 #[cfg(feature = "gui")]
 #[test]
 fn the_window_is_drawn_without_a_display() {

@@ -183,3 +183,24 @@ fn pictures_that_a_file_refers_to_go_along() {
         written.notes
     );
 }
+
+#[test]
+fn a_name_of_another_format_is_told_with_the_right_one() {
+    let check = |name: &str, bytes: &[u8], expected: &str| {
+        let error = open_bytes(Path::new(name), bytes.to_vec(), &OpenOptions::default()).unwrap_err();
+        assert_eq!(error.to_string(), format!("{name}: content: expected {expected}"));
+    };
+    let bvh = "\u{feff}hierarchy\r\nROOT a { OFFSET 0 0 0 CHANNELS 0 }";
+    check("a.glb", bvh.as_bytes(), "GLB, as the name says, found BVH; rename it to end in .bvh");
+    check("a.csv", bvh.as_bytes(), "CSV, as the name says, found BVH; rename it to end in .bvh");
+    check("a.bvh", b"glTF\x02\0\0\0", "BVH, as the name says, found GLB; rename it to end in .glb");
+    check("a.csv", b" { \"asset\": {} }", "CSV, as the name says, found glTF; rename it to end in .gltf");
+    // Either kind of glTF reads under either name, as other programs do it, and a table may begin with any word.
+    for (name, bytes) in [
+        ("a.glb", &b"{\"asset\":{\"version\":\"2.0\"}}"[..]),
+        ("hierarchy.csv", b"hierarchy,time,a.x\n0,0,1\n"),
+    ] {
+        let opened = open_bytes(Path::new(name), bytes.to_vec(), &OpenOptions::default());
+        assert!(opened.is_ok(), "{name}: {opened:?}");
+    }
+}

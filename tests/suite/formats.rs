@@ -11,7 +11,7 @@ use base64::Engine;
 use glam::{DMat3, DVec3};
 use serde_json::{Value, json};
 use turnwright::clip::Clip;
-use turnwright::exchange::{OpenOptions, Source, bvh, encode, gltf, open_bytes};
+use turnwright::exchange::{OpenOptions, Source, bvh, disk, encode, gltf, open_bytes};
 use turnwright::rotor::Rotor;
 
 use crate::gltf_broken::Dice;
@@ -128,6 +128,25 @@ impl Store {
                 });
                 (accessor, stored.collect())
             }
+            7 => {
+                // Sparse over whole numbers: every other key is another than the view has.
+                let stored = whole(32767.0);
+                let short = |keys: Vec<[i32; 4]>| -> Vec<u8> {
+                    keys.iter().flatten().flat_map(|&c| (c as i16).to_le_bytes()).collect()
+                };
+                let base: Vec<[i32; 4]> = (0..count).map(|key| stored[key / 2 * 2]).collect();
+                let given: Vec<usize> = (0..count).filter(|key| key % 2 == 1).collect();
+                let accessor = integers(self, 5122, &short(base), None);
+                let indices: Vec<u8> = given.iter().map(|&key| key as u8).collect();
+                let indices = self.view(&indices, None);
+                let values = self.view(&short(given.iter().map(|&key| stored[key]).collect()), None);
+                self.accessors[accessor]["sparse"] = json!({
+                    "count": given.len(),
+                    "indices": { "bufferView": indices, "componentType": 5121 },
+                    "values": { "bufferView": values },
+                });
+                (accessor, found(&stored, 32767.0))
+            }
             _ => {
                 let numbers: Vec<f32> = keys.iter().flatten().map(|&number| number as f32).collect();
                 let stored = keys.iter().map(|key| key.map(|number| f64::from(number as f32)));
@@ -135,6 +154,172 @@ impl Store {
             }
         }
     }
+}
+
+/// A document that other programs read too: 76 clips of a chain of joints that 84 skins share, in the encodings that they know,
+/// and the rotations that each clip has for each joint.
+fn plain_crowd() -> (Value, Vec<Vec<Vec<[f64; 4]>>>) {
+    let mut dice = Dice::new(84);
+    let mut store = Store::default();
+    let secs: Vec<f32> = (0..KEYS).map(|key| key as f32 / 24.0).collect();
+    let times = store.floats(&secs, "SCALAR", KEYS);
+    store.accessors[times]["min"] = json!([0.0]);
+    store.accessors[times]["max"] = json!([f64::from(secs[KEYS - 1])]);
+    let (mut animations, mut all) = (Vec::new(), Vec::new());
+    for clip in 0..CLIPS {
+        let (mut channels, mut samplers, mut keys_of) = (Vec::new(), Vec::new(), Vec::new());
+        for joint in 0..JOINTS {
+            let keys: Vec<[f64; 4]> = (0..KEYS)
+                .map(|_| {
+                    let numbers: [f64; 4] = std::array::from_fn(|_| dice.below(1000) as f64 / 1000.0 + 0.01);
+                    let length = numbers.iter().map(|number| number * number).sum::<f64>().sqrt();
+                    numbers.map(|number| number / length)
+                })
+                .collect();
+            let (output, stored) = store.rotations([0, 1, 2, 3, 6, 7][(clip + joint) % 6], &keys);
+            channels.push(json!({ "sampler": joint, "target": { "node": joint, "path": "rotation" } }));
+            let interpolation = if joint % 4 == 3 { "STEP" } else { "LINEAR" };
+            samplers.push(json!({ "input": times, "output": output, "interpolation": interpolation }));
+            keys_of.push(stored);
+        }
+        animations
+            .push(json!({ "name": format!("clip {clip}"), "channels": channels, "samplers": samplers }));
+        all.push(keys_of);
+    }
+    let nodes: Vec<Value> = (0..JOINTS)
+        .map(|joint| {
+            let mut node = json!({ "name": format!("j{joint}"), "translation": [0.0, 0.5, 0.0] });
+            if joint + 1 < JOINTS {
+                node["children"] = json!([joint + 1]);
+            }
+            node
+        })
+        .collect();
+    let skins: Vec<Value> =
+        (0..SKINS).map(|skin| json!({ "joints": [skin % JOINTS, (skin + 1) % JOINTS] })).collect();
+    let text = base64::engine::general_purpose::STANDARD.encode(&store.bytes);
+    let document = json!({
+        "asset": { "version": "2.0" },
+        "scene": 0,
+        "scenes": [{ "nodes": [0] }],
+        "nodes": nodes,
+        "skins": skins,
+        "buffers": [{ "byteLength": store.bytes.len(), "uri": format!("data:application/octet-stream;base64,{text}") }],
+        "bufferViews": store.views,
+        "accessors": store.accessors,
+        "animations": animations,
+    });
+    (document, all)
+}
+
+/// Under a joint whose size grows along one axis a turned one: CUBICSPLINE, STEP and LINEAR with times that begin late.
+fn uneven() -> Value {
+    let mut store = Store::default();
+    let secs = [0.5_f32, 0.6, 1.0, 1.7, 1.71, 3.0];
+    let count = secs.len();
+    let times = store.floats(&secs, "SCALAR", count);
+    store.accessors[times]["min"] = json!([0.5]);
+    store.accessors[times]["max"] = json!([3.0]);
+    let about_y =
+        |degrees: f32| [0.0, (degrees.to_radians() / 2.0).sin(), 0.0, (degrees.to_radians() / 2.0).cos()];
+    let keys: Vec<[f32; 4]> = [0.0, 40.0, 90.0, 20.0, 22.0, 170.0].map(about_y).to_vec();
+    let ends = |key: usize| if key == 0 || key + 1 == count { 0.0 } else { 0.1 };
+    let cubic: Vec<f32> = (0..count)
+        .flat_map(|key| {
+            let tangent = ends(key);
+            [[0.0, tangent, 0.0, -tangent], keys[key], [0.0, tangent, tangent / 2.0, -tangent]].concat()
+        })
+        .collect();
+    let held: Vec<f32> = keys
+        .iter()
+        .enumerate()
+        .flat_map(|(key, own)| own.map(|part| if key % 2 == 0 { part } else { -part }))
+        .collect();
+    let places: Vec<f32> = (0..count).flat_map(|key| [key as f32, 1.0, (key * key) as f32 * 0.1]).collect();
+    let sizes: Vec<f32> = (0..count).flat_map(|key| [1.0, 1.0 + key as f32 * 0.1, 1.0]).collect();
+    let outputs = [
+        store.floats(&cubic, "VEC4", 3 * count),
+        store.floats(&held, "VEC4", count),
+        store.floats(&places, "VEC3", count),
+        store.floats(&sizes, "VEC3", count),
+    ];
+    let sampler = |index: usize, interpolation: &str| json!({ "input": times, "output": outputs[index], "interpolation": interpolation });
+    let channel = |sampler: usize, node: usize, path: &str| json!({ "sampler": sampler, "target": { "node": node, "path": path } });
+    let half = std::f64::consts::FRAC_1_SQRT_2;
+    let text = base64::engine::general_purpose::STANDARD.encode(&store.bytes);
+    json!({
+        "asset": { "version": "2.0" },
+        "scene": 0,
+        "scenes": [{ "nodes": [0] }],
+        "nodes": [
+            { "name": "j0", "translation": [0, 2, 0], "children": [1] },
+            { "name": "j1", "translation": [0, 1, 0], "children": [2] },
+            { "name": "j2", "translation": [0, 1, 0], "children": [3] },
+            { "name": "j3", "translation": [0, 1, 0], "rotation": [0, 0, half, half], "children": [4] },
+            { "name": "j4", "translation": [0.3, 1, 0], "rotation": [0.28, 0, 0, 0.96] },
+        ],
+        "skins": [{ "joints": [0, 1, 2, 3, 4] }],
+        "buffers": [{ "byteLength": store.bytes.len(), "uri": format!("data:application/octet-stream;base64,{text}") }],
+        "bufferViews": store.views,
+        "accessors": store.accessors,
+        "animations": [{
+            "channels": [
+                channel(0, 0, "rotation"), channel(1, 1, "rotation"), channel(2, 1, "translation"), channel(3, 2, "scale"),
+            ],
+            "samplers": [
+                sampler(0, "CUBICSPLINE"), sampler(1, "STEP"), sampler(2, "LINEAR"), sampler(3, "LINEAR"),
+            ],
+        }],
+    })
+}
+
+/// Where `tests/outside/run.sh` looks for files that other programs shall play.
+fn keep_for_outside(name: &str, bytes: &[u8]) {
+    let folder = Path::new(env!("CARGO_TARGET_TMPDIR")).join("odd");
+    disk::write(&folder.join(name), bytes).unwrap();
+}
+
+#[test]
+fn a_crowd_that_others_read_too_has_the_keys_of_the_standards_table() {
+    let (document, expected) = plain_crowd();
+    let text = document.to_string();
+    keep_for_outside("crowd.gltf", text.as_bytes());
+    let source = opened("crowd.gltf", text.into_bytes());
+    assert_eq!((source.clips.len(), source.clips[0].skeleton.listed().count()), (CLIPS, JOINTS));
+    for (clip, expected) in source.clips.iter().zip(&expected) {
+        for (joint, expected) in expected.iter().enumerate() {
+            let track = clip.rotation(joint).unwrap();
+            // One by one and all together.
+            let single: Vec<[f64; 4]> = (0..KEYS).map(|key| track.keys.rotor(key).to_xyzw()).collect();
+            let found: Vec<[f64; 4]> = track.keys.iter().map(|key| key.to_xyzw()).collect();
+            assert_eq!((&found, &single), (expected, expected), "{} joint {joint}", clip.name);
+        }
+    }
+}
+
+/// A sheared joint has no one turn; what is told is the product of the turns above it, and places are those of the matrices.
+/// Worked out for a size of (1, 1.4, 1) and a turn of 90 degrees about z below it: a point one along the turned joint's y, which
+/// then lies along −x, is not drawn out, and one along its x, along y, is.
+#[test]
+fn below_an_uneven_size_places_are_drawn_out_and_turns_are_products() {
+    let text = uneven().to_string();
+    keep_for_outside("uneven.gltf", text.as_bytes());
+    let source = opened("uneven.gltf", text.into_bytes());
+    let clip = &source.clips[0];
+    // The fifth key.
+    let secs = f64::from(1.71_f32);
+    let world = clip.world_at(secs);
+    let local = clip.local_at(secs);
+    let size = local[2].scale;
+    assert!((size - DVec3::new(1.0, 1.4, 1.0)).length() < 1e-6, "{size}");
+    let turn = world[2].rotation;
+    // From j3 to j4: (0.3, 1, 0) turned by 90 degrees is (−1, 0.3, 0), drawn out (−1, 0.42, 0).
+    let expected = world[3].position() + turn.apply(DVec3::new(-1.0, 0.42, 0.0));
+    assert!(world[4].position().distance(expected) < 1e-6, "{} {expected}", world[4].position());
+    let product = turn * local[3].rotation * local[4].rotation;
+    assert!(world[4].rotation.turn_to(product) < 1e-12);
+    // Before the first key its value is held, also of a held and a smooth track.
+    assert_eq!(clip.local_at(0.0), clip.local_at(0.5));
 }
 
 /// A document of 76 clips and 84 skins, and the rotations that each clip has for each joint.

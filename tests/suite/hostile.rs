@@ -3,6 +3,7 @@
 //!
 //! The work runs in a process of its own, so that its memory is not that of the tests beside it, and a hang can be told.
 
+use std::fmt::Write as _;
 use std::io::Write as _;
 use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::path::{Path, PathBuf};
@@ -14,7 +15,7 @@ use std::time::{Duration, Instant};
 use serde_json::{Value, json};
 use turnwright::clip::Clip;
 use turnwright::exchange::csv::{CsvOptions, TimeUnit};
-use turnwright::exchange::{OpenOptions, Source, csv, disk, encode, open_bytes, ron};
+use turnwright::exchange::{Guard, OpenOptions, Source, csv, disk, encode, open_bytes, ron, write};
 use turnwright::rotor::Rotor;
 use turnwright::scene::{Evaluator, NoOthers};
 
@@ -376,75 +377,300 @@ fn work(first: usize, last: usize) {
     assert!(n_read * 20 > last - first, "too few are still readable to say anything: {n_read}");
 }
 
-/// Large files that ask for far more memory than they have bytes.
-fn large_files() -> Vec<(&'static str, Vec<u8>)> {
-    const SIZE: usize = 6 << 20;
-    let repeated = |before: &str, part: &str, after: &str| {
-        let mut text = String::with_capacity(before.len() + SIZE + part.len() + after.len());
-        text.push_str(before);
-        while text.len() < SIZE {
-            text.push_str(part);
-        }
-        text.push_str(after);
-        text.into_bytes()
-    };
-    let asset = "{\"asset\":{\"version\":\"2.0\"},";
-    let json = |before: &str, part: &str, after: &str| repeated(&format!("{asset}{before}"), part, after);
-    let hierarchy = BVH.split("MOTION").next().unwrap_or_default();
-    vec![
-        ("children.gltf", json("\"nodes\":[{\"children\":[", "0,", "0]}]}")),
-        ("nodes.gltf", json("\"nodes\":[", "{},", "{}]}")),
-        ("animations.gltf", json("\"nodes\":[{}],\"animations\":[", "{},", "{}]}")),
-        ("accessors.gltf", json("\"accessors\":[", "[],", "[]]}")),
-        ("extras.gltf", json("\"extras\":[", "0,", "0]}")),
-        ("deep.gltf", json("\"nodes\":", "[", "]")),
-        ("deep_extras.gltf", json("\"extras\":", "{\"a\":", "}")),
-        ("text.gltf", json("\"nodes\":[{\"name\":\"", "\\u00e9", "\"}]}")),
-        ("joints.bvh", repeated("HIERARCHY\nROOT a {", "JOINT b { OFFSET 0 0 0 ", "")),
-        ("siblings.bvh", repeated("HIERARCHY\nROOT a {", "JOINT b { OFFSET 0 0 0 }\n", "}")),
-        ("channels.bvh", repeated("HIERARCHY\nROOT a { CHANNELS 4000000000 ", "Xrotation ", "}")),
-        (
-            "frames.bvh",
-            repeated(&format!("{hierarchy}MOTION\nFrames: 4000000000\nFrame Time: 0.01\n"), "0.25 ", ""),
-        ),
-        ("comments.bvh", repeated("HIERARCHY\n", "# x\n", "")),
-        ("header.csv", repeated("time", ",", "\n")),
-        ("row.csv", repeated("time,a.yz\n0", ",", "\n")),
-        ("bones.csv", repeated("", "# joint a parent b offset 0 0 0\n", "time,a.yz\n")),
-        ("quotes.csv", repeated("time,\"", "\"\"", "\n")),
-        ("open.ron", repeated("", "(", "")),
-        (
-            "list.ron",
-            repeated("(turnwright_scene: 1, sources: [", "(path: \"\", sha256: \"\"),", "], clips: [])"),
-        ),
-    ]
+/// What is to become of a large file.
+#[derive(Clone, Copy, PartialEq)]
+enum Fate {
+    /// It is read or refused.
+    Any,
+    /// It is read, played, changed and written.
+    Read,
+    /// It is refused with these words.
+    Refused(&'static str),
 }
 
-/// Opens the large file of a number, alone in its process.
+/// A large file that asks for more memory than it has bytes, made when it is its turn.
+struct Large {
+    /// Its name; the extension gives the format.
+    name: &'static str,
+    make: Box<dyn Fn() -> Vec<u8>>,
+    fate: Fate,
+}
+
+/// Text, with a part in it that is repeated until it has its size.
+fn repeated(size: usize, before: &str, part: &str, after: &str) -> Vec<u8> {
+    let mut text = String::with_capacity(before.len() + size + part.len() + after.len());
+    text.push_str(before);
+    while text.len() < size {
+        text.push_str(part);
+    }
+    text.push_str(after);
+    text.into_bytes()
+}
+
+fn large_files() -> Vec<Large> {
+    const SIZE: usize = 6 << 20;
+    let hierarchy = BVH.split("MOTION").next().unwrap_or_default();
+    let any = |name: &'static str, before: String, part: &'static str, after: &'static str| {
+        let make = Box::new(move || repeated(SIZE, &before, part, after));
+        Large { name, make, fate: Fate::Any }
+    };
+    let json = |name, before: &str, part, after| {
+        any(name, format!("{{\"asset\":{{\"version\":\"2.0\"}},{before}"), part, after)
+    };
+    let text = |name, before: &str, part, after| any(name, before.to_owned(), part, after);
+    let mut all = vec![
+        json("children.gltf", "\"nodes\":[{\"children\":[", "0,", "0]}]}"),
+        json("nodes.gltf", "\"nodes\":[", "{},", "{}]}"),
+        json("animations.gltf", "\"nodes\":[{}],\"animations\":[", "{},", "{}]}"),
+        json("accessors.gltf", "\"accessors\":[", "[],", "[]]}"),
+        json("extras.gltf", "\"extras\":[", "0,", "0]}"),
+        json("deep.gltf", "\"nodes\":", "[", "]"),
+        json("deep_extras.gltf", "\"extras\":", "{\"a\":", "}"),
+        json("text.gltf", "\"nodes\":[{\"name\":\"", "\\u00e9", "\"}]}"),
+        text("joints.bvh", "HIERARCHY\nROOT a {", "JOINT b { OFFSET 0 0 0 ", ""),
+        text("siblings.bvh", "HIERARCHY\nROOT a {", "JOINT b { OFFSET 0 0 0 }\n", "}"),
+        text("channels.bvh", "HIERARCHY\nROOT a { CHANNELS 4000000000 ", "Xrotation ", "}"),
+        any("frames.bvh", format!("{hierarchy}MOTION\nFrames: 4000000000\nFrame Time: 0.01\n"), "0.25 ", ""),
+        text("comments.bvh", "HIERARCHY\n", "# x\n", ""),
+        text("header.csv", "time", ",", "\n"),
+        text("row.csv", "time,a.yz\n0", ",", "\n"),
+        text("bones.csv", "", "# joint a parent b offset 0 0 0\n", "time,a.yz\n"),
+        text("quotes.csv", "time,\"", "\"\"", "\n"),
+        text("one_time.csv", "time,a.x\n", "0,1\n", ""),
+        text("open.ron", "", "(", ""),
+        text("list.ron", "(turnwright_scene: 1, sources: [", "(path: \"\", sha256: \"\"),", "], clips: [])"),
+    ];
+    // Numbers as short as numbers can be, in tens of megabytes.
+    let cut = Fate::Refused("; cut the file into shorter ones");
+    let turns = "Zrotation Xrotation Yrotation";
+    let places = "Xposition Yposition Zposition Zrotation Xrotation Yrotation";
+    let bvh = |name, channels: &'static str, numbers: &'static str, fate| {
+        let make = Box::new(move || short_bvh(channels, numbers));
+        Large { name, make, fate }
+    };
+    let csv = |name, columns: &'static str, numbers: &'static str, fate| {
+        let make = Box::new(move || short_csv(columns, numbers));
+        Large { name, make, fate }
+    };
+    let glb = |name, path: &'static str, component: usize, interpolation: &'static str, fate| {
+        let make = Box::new(move || short_glb(path, component, interpolation));
+        Large { name, make, fate }
+    };
+    let bytes = Fate::Refused(" MB of numbers in all animation");
+    all.extend([
+        bvh("three_turns.bvh", turns, "0 1 2 3 4 5 6 7 8 9 -1 ", Fate::Read),
+        bvh("six_channels.bvh", places, "0 9 0 7 5 ", Fate::Read),
+        bvh("two_turns.bvh", "Zrotation Xrotation", "0 1 2 3 4 ", Fate::Read),
+        bvh("one_turn.bvh", "Yrotation", "0 1 2 3 4 .5 ", Fate::Read),
+        bvh("one_place.bvh", "Zposition", "0 1 2 3 4 ", Fate::Read),
+        bvh("fractions.bvh", turns, "0 1 2 3 4 5 6 7 8 9 .5 ", cut),
+        csv("quaternions.csv", "qx qy qz qw", "0 1 2 3 4 ", Fate::Read),
+        csv("three_turns.csv", "z x y", "0 1 2 3 4 ", Fate::Read),
+        csv("one_turn.csv", "x", "0 1 2 3 4 .5 ", Fate::Read),
+        csv("one_place.csv", "tz", "0 1 2 3 4 ", Fate::Read),
+        csv("planes.csv", "yz zx xy", "0 1 2 3 4 ", cut),
+        glb("bytes.glb", "rotation", 5120, "LINEAR", Fate::Read),
+        glb("shorts.glb", "rotation", 5122, "LINEAR", Fate::Read),
+        glb("cubic.glb", "rotation", 5126, "CUBICSPLINE", Fate::Read),
+        glb("cubic_bytes.glb", "rotation", 5120, "CUBICSPLINE", bytes),
+        glb("places_bytes.glb", "translation", 5120, "LINEAR", bytes),
+    ]);
+    all
+}
+
+/// Bytes of the files of short numbers.
+const SHORT_SIZE: usize = 40 << 20;
+/// Their joints, each below the one before.
+const SHORT_JOINTS: usize = 61;
+
+/// A motion file of such numbers, again and again, with these channels a joint.
+fn short_bvh(channels: &str, numbers: &str) -> Vec<u8> {
+    let count = channels.split(' ').count();
+    let mut text = "HIERARCHY\n".to_owned();
+    for joint in 0..SHORT_JOINTS {
+        let kind = if joint == 0 { "ROOT" } else { "JOINT" };
+        text.extend([kind, &format!(" j{joint} {{ OFFSET 0 1 0 CHANNELS {count} {channels}\n")]);
+    }
+    text.push_str(&"}".repeat(SHORT_JOINTS));
+    text.push_str("\nMOTION\nFrame Time: 0.01\n");
+    let mut numbers = numbers.split_inclusive(' ').cycle();
+    while text.len() < SHORT_SIZE {
+        text.extend(numbers.by_ref().take(SHORT_JOINTS * count));
+        text.push('\n');
+    }
+    text.into_bytes()
+}
+
+/// A table of such numbers, with these columns a joint.
+fn short_csv(columns: &str, numbers: &str) -> Vec<u8> {
+    let count = columns.split(' ').count();
+    let mut text = "time".to_owned();
+    for joint in 0..SHORT_JOINTS {
+        text.extend(columns.split(' ').map(|column| format!(",j{joint}.{column}")));
+    }
+    let mut numbers = numbers.trim_end().split(' ').cycle();
+    for row in 0.. {
+        let _ = write!(text, "\n{row}");
+        for number in numbers.by_ref().take(SHORT_JOINTS * count) {
+            text.push(',');
+            text.push_str(number);
+        }
+        if text.len() >= SHORT_SIZE {
+            break;
+        }
+    }
+    text.into_bytes()
+}
+
+/// A document whose joints all move by keys of the shortest kind, at the same times.
+fn short_glb(path: &str, component: usize, interpolation: &str) -> Vec<u8> {
+    let (components, kind) = if path == "rotation" { (4, "VEC4") } else { (3, "VEC3") };
+    let per_key = if interpolation == "CUBICSPLINE" { 3 } else { 1 };
+    let size = match component {
+        5120 => 1,
+        5122 => 2,
+        _ => 4,
+    };
+    let key_bytes = components * per_key * size;
+    let keys = (SHORT_SIZE / SHORT_JOINTS / key_bytes).next_multiple_of(4);
+    let mut bin: Vec<u8> = (0..keys).flat_map(|key| (key as f32 * 0.01).to_le_bytes()).collect();
+    let mut views = vec![json!({ "buffer": 0, "byteLength": bin.len() })];
+    let last = f64::from((keys - 1) as f32 * 0.01);
+    let mut accessors = vec![json!({
+        "bufferView": 0, "componentType": 5126, "count": keys, "type": "SCALAR", "min": [0], "max": [last]
+    })];
+    let (mut nodes, mut channels, mut samplers) = (Vec::new(), Vec::new(), Vec::new());
+    for joint in 0..SHORT_JOINTS {
+        let one: Vec<u8> = match component {
+            5120 => vec![0, 0, 100, 100],
+            5122 => [0_i16, 0, 23_000, 23_000].into_iter().flat_map(i16::to_le_bytes).collect(),
+            _ => [0.0_f32, 0.0, 0.6, 0.8].into_iter().flat_map(f32::to_le_bytes).collect(),
+        };
+        let start = bin.len();
+        bin.extend(one.iter().cycle().take(keys * key_bytes));
+        views.push(json!({ "buffer": 0, "byteOffset": start, "byteLength": bin.len() - start }));
+        accessors.push(json!({
+            "bufferView": joint + 1, "componentType": component, "normalized": component != 5126,
+            "count": keys * per_key, "type": kind,
+        }));
+        channels.push(json!({ "sampler": joint, "target": { "node": joint, "path": path } }));
+        samplers.push(json!({ "input": 0, "output": joint + 1, "interpolation": interpolation }));
+        let children: Vec<usize> = (joint + 1..SHORT_JOINTS).take(1).collect();
+        nodes.push(if children.is_empty() { json!({}) } else { json!({ "children": children }) });
+    }
+    let document = json!({
+        "asset": { "version": "2.0" },
+        "nodes": nodes,
+        "animations": [{ "channels": channels, "samplers": samplers }],
+        "accessors": accessors,
+        "bufferViews": views,
+        "buffers": [{ "byteLength": bin.len() }],
+    });
+    let mut text = document.to_string().into_bytes();
+    text.resize(text.len().next_multiple_of(4), b' ');
+    let word = |number: usize| (number as u32).to_le_bytes();
+    let mut glb = Vec::with_capacity(28 + text.len() + bin.len());
+    glb.extend_from_slice(b"glTF\x02\0\0\0");
+    glb.extend(word(28 + text.len() + bin.len()));
+    glb.extend(word(text.len()));
+    glb.extend_from_slice(b"JSON");
+    glb.extend(text);
+    glb.extend(word(bin.len()));
+    glb.extend_from_slice(b"BIN\0");
+    glb.extend(bin);
+    glb
+}
+
+/// Opens the large file of a number, alone in its process, and does with it what is done with clips.
 #[expect(clippy::print_stdout, reason = "the parent process reads it")]
 fn open_large(number: usize) {
-    let (name, bytes) = large_files().swap_remove(number);
-    let most = 8 * bytes.len() as u64 + SPARE_BYTES;
+    let Large { name, make, fate } = large_files().swap_remove(number);
+    let bytes = make();
+    let size = bytes.len() as u64;
     // 5 sets the peak back to what is used now.
     let reset = std::fs::OpenOptions::new().write(true).open("/proc/self/clear_refs");
     let is_reset = reset.and_then(|mut file| file.write_all(b"5")).is_ok();
-    let start_bytes = peak_bytes().filter(|_| is_reset);
+    // The file itself is in memory by now, and counts.
+    let start_bytes = peak_bytes().filter(|_| is_reset).map(|peak| peak - size);
+    let used =
+        || peak_bytes().zip(start_bytes).map_or(0.0, |(peak, start)| (peak - start) as f64 / size as f64);
     let started = Instant::now();
-    let is_read = match name.strip_suffix(".ron") {
-        Some(_) => {
-            std::str::from_utf8(&bytes).is_ok_and(|text| ron::from_text(Path::new(name), text).is_ok())
+    let mut steps = Vec::new();
+    let error = if name.ends_with(".ron") {
+        let text = std::str::from_utf8(&bytes);
+        let is_read = text.is_ok_and(|text| ron::from_text(Path::new(name), text).is_ok());
+        (!is_read).then(|| "refused".to_owned())
+    } else {
+        match open_bytes(Path::new(name), bytes, &OpenOptions::default()) {
+            Err(error) => Some(error.to_string()),
+            Ok(source) => {
+                steps.push(("open", used()));
+                if fate == Fate::Read {
+                    play(&source.clips[0]);
+                    steps.push(("play", used()));
+                    change_and_write(&source, name);
+                    steps.push(("write", used()));
+                }
+                None
+            }
         }
-        None => open_bytes(Path::new(name), bytes, &OpenOptions::default()).is_ok(),
     };
-    let used = peak_bytes().zip(start_bytes).map_or(0, |(peak, start)| peak - start);
+    let told = error.clone().unwrap_or_default();
+    steps.push(("all", used()));
+    let times: Vec<String> = steps.iter().map(|(step, times)| format!("{step} {times:.1}")).collect();
     println!(
-        "{name} is read: {is_read}, {} MB of {}, {:.1} s",
-        used >> 20,
-        most >> 20,
+        "{name} is done: {} times its {} MB, {:.1} s {told:.90}",
+        times.join(", "),
+        size >> 20,
         started.elapsed().as_secs_f64()
     );
-    assert!(used <= most, "{name} took {} MB", used >> 20);
-    assert!(started.elapsed() < LONGEST, "{name} took {:?}", started.elapsed());
+    match fate {
+        Fate::Any => {}
+        Fate::Read => assert!(error.is_none(), "{name}: {told}"),
+        Fate::Refused(words) => assert!(told.contains(words), "{name}: {told}"),
+    }
+    let most = 8.0 + SPARE_BYTES as f64 / size as f64;
+    assert!(used() <= most, "{name} took {:.2} times its size, at most {most:.2} are allowed", used());
+    assert!(started.elapsed() < LONGEST * 3, "{name} took {:?}", started.elapsed());
+}
+
+/// A pose, and each joint at many times in turn.
+fn play(clip: &Clip) {
+    let _ = clip.world_at(0.123);
+    let times: Vec<f64> = (0..300).map(|i| clip.duration_secs * f64::from(i) / 300.0).collect();
+    for joint in 0..clip.joints.len() {
+        assert_eq!(clip.rotations_at(joint, &times).len(), times.len());
+    }
+    let _ = clip.worlds_at(&times);
+}
+
+/// The clip with one key changed, put back into its file. (Other formats may take many digits for one.)
+fn change_and_write(source: &Source, name: &str) {
+    let folder = tempfile::tempdir().expect("a folder for it");
+    let results = [Arc::new(changed(&source.clips[0]))];
+    let written = write(source, &results, None, &folder.path().join(name), &Guard::default());
+    assert!(written.is_ok(), "{name}: {written:?}");
+}
+
+/// Runs a test of this file again in a process of its own, with a task to do, and gives what it printed.
+fn start_again(test: &str, task: &str) -> std::process::Child {
+    Command::new(std::env::current_exe().expect("this program"))
+        .args(["--exact", &format!("hostile::{test}"), "--nocapture"])
+        .env("RUST_BACKTRACE", "0")
+        .env(TASK, task)
+        .stdout(Stdio::piped())
+        .stderr(Stdio::piped())
+        .spawn()
+        .expect("this program starts again")
+}
+
+/// Waits for such a process, and gives the line that it printed with these words in it.
+#[track_caller]
+fn line_of(child: std::process::Child, words: &str) -> String {
+    let output = child.wait_with_output().expect("it ends");
+    let text = String::from_utf8_lossy(&output.stdout);
+    assert!(output.status.success(), "{text}\n{}", String::from_utf8_lossy(&output.stderr));
+    text.lines().find(|line| line.contains(words)).unwrap_or_else(|| panic!("not told: {text}")).to_owned()
 }
 
 #[test]
@@ -453,114 +679,8 @@ fn large_files_take_no_more_memory_than_eight_times_their_size_and_64_mb() {
         return open_large(task.parse().expect("a number"));
     }
     for number in 0..large_files().len() {
-        let output = Command::new(std::env::current_exe().expect("this program"))
-            .args([
-                "--exact",
-                "hostile::large_files_take_no_more_memory_than_eight_times_their_size_and_64_mb",
-            ])
-            .args(["--nocapture"])
-            .env("RUST_BACKTRACE", "0")
-            .env(TASK, number.to_string())
-            .output()
-            .expect("this program starts again");
-        let text = String::from_utf8_lossy(&output.stdout);
-        let line = text.lines().find(|line| line.contains(" is read: "));
-        println!("{}", line.unwrap_or("nothing was told"));
-        assert!(output.status.success(), "{number}: {text}\n{}", String::from_utf8_lossy(&output.stderr));
-    }
-}
-
-/// A whole motion file of 60 MB whose numbers are as short as numbers can be: what its joints' channels are, the numbers of a row in
-/// turn, and whether it is read. Where it is, it is also played unless that is known to take more.
-const SHORT_NUMBERS: [(&str, &[&str], &str, bool, bool); 6] = [
-    ("three turns a joint", &["Zrotation", "Xrotation", "Yrotation"], "0 1 2 3 4 5 6 7 8 9 -1 ", true, true),
-    (
-        "six channels a joint",
-        &["Xposition", "Yposition", "Zposition", "Zrotation", "Xrotation", "Yrotation"],
-        "0 9 0 7 5 ",
-        true,
-        true,
-    ),
-    ("two turns a joint", &["Zrotation", "Xrotation"], "0 1 2 3 4 ", true, false),
-    ("one turn a joint", &["Yrotation"], "0 1 2 3 4 .5 ", true, false),
-    (
-        "all but one number whole",
-        &["Zrotation", "Xrotation", "Yrotation"],
-        "0 1 2 3 4 5 6 7 8 9 .5 ",
-        false,
-        false,
-    ),
-    ("one place a joint", &["Zposition"], "0 1 2 3 4 ", false, false),
-];
-
-/// Such a file.
-fn short_numbers(channels: &[&str], numbers: &str) -> Vec<u8> {
-    const SIZE: usize = 60 << 20;
-    let n_joints = 61;
-    let mut text = "HIERARCHY\n".to_owned();
-    for joint in 0..n_joints {
-        let kind = if joint == 0 { "ROOT" } else { "JOINT" };
-        let (count, names) = (channels.len(), channels.join(" "));
-        text.extend([kind, &format!(" j{joint} {{ OFFSET 0 1 0 CHANNELS {count} {names}\n")]);
-    }
-    text.push_str(&"}".repeat(n_joints));
-    text.push_str("\nMOTION\nFrame Time: 0.01\n");
-    let columns = n_joints * channels.len();
-    let mut numbers = numbers.split_inclusive(' ').cycle();
-    while text.len() < SIZE {
-        text.extend(numbers.by_ref().take(columns));
-        text.push('\n');
-    }
-    text.into_bytes()
-}
-
-/// Opens such a file, alone in its process.
-#[expect(clippy::print_stdout, reason = "the parent process reads it")]
-fn open_short_numbers(number: usize) {
-    let (name, channels, numbers, is_read, is_played) = SHORT_NUMBERS[number];
-    let bytes = short_numbers(channels, numbers);
-    let size = bytes.len() as u64;
-    let reset = std::fs::OpenOptions::new().write(true).open("/proc/self/clear_refs");
-    let is_reset = reset.and_then(|mut file| file.write_all(b"5")).is_ok();
-    // The text itself is in memory by now, and counts.
-    let start_bytes = peak_bytes().filter(|_| is_reset).map(|peak| peak - size);
-    let opened = open_bytes(Path::new("short.bvh"), bytes, &OpenOptions::default());
-    match &opened {
-        Ok(source) => {
-            assert!(is_read, "{name} is read");
-            if is_played {
-                let _ = source.clips[0].world_at(0.123);
-            }
-        }
-        Err(error) => {
-            let text = error.to_string();
-            assert!(!is_read && text.contains("; cut the file into shorter ones"), "{name}: {text}");
-        }
-    }
-    let used = peak_bytes().zip(start_bytes).map_or(0, |(peak, start)| peak - start);
-    println!("{name} is read: {is_read}, {:.2} times its size", used as f64 / size as f64);
-    assert!(used <= 8 * size + SPARE_BYTES, "{name} took {} MB of {}", used >> 20, size >> 20);
-}
-
-#[test]
-fn motion_of_numbers_of_one_digit_takes_no_more_than_eight_times_its_size_and_64_mb() {
-    if let Ok(task) = std::env::var(TASK) {
-        return open_short_numbers(task.parse().expect("a number"));
-    }
-    for (number, (name, ..)) in SHORT_NUMBERS.iter().enumerate() {
-        let output = Command::new(std::env::current_exe().expect("this program"))
-            .args([
-                "--exact",
-                "hostile::motion_of_numbers_of_one_digit_takes_no_more_than_eight_times_its_size_and_64_mb",
-            ])
-            .args(["--nocapture"])
-            .env("RUST_BACKTRACE", "0")
-            .env(TASK, number.to_string())
-            .output()
-            .expect("this program starts again");
-        let text = String::from_utf8_lossy(&output.stdout);
-        println!("{}", text.lines().find(|line| line.contains(" is read: ")).unwrap_or("nothing was told"));
-        assert!(output.status.success(), "{name}: {text}\n{}", String::from_utf8_lossy(&output.stderr));
+        let test = "large_files_take_no_more_memory_than_eight_times_their_size_and_64_mb";
+        println!("{}", line_of(start_again(test, &number.to_string()), " is done: "));
     }
 }
 
@@ -575,23 +695,12 @@ fn a_hundred_thousand_damaged_files_do_no_harm() {
     let bounds = |part: usize| FILES * part / n_parts;
     let parts: Vec<_> = (0..n_parts)
         .map(|part| {
-            Command::new(std::env::current_exe().expect("this program"))
-                .args(["--exact", "hostile::a_hundred_thousand_damaged_files_do_no_harm", "--nocapture"])
-                .env("RUST_BACKTRACE", "0")
-                .env(TASK, format!("{}..{}", bounds(part), bounds(part + 1)))
-                .stdout(Stdio::piped())
-                .stderr(Stdio::piped())
-                .spawn()
-                .expect("this program starts again")
+            let task = format!("{}..{}", bounds(part), bounds(part + 1));
+            start_again("a_hundred_thousand_damaged_files_do_no_harm", &task)
         })
         .collect();
     for part in parts {
-        let output = part.wait_with_output().expect("it ends");
-        let text = String::from_utf8_lossy(&output.stdout);
-        let errors = String::from_utf8_lossy(&output.stderr);
-        assert!(output.status.success(), "{text}\n{errors}");
-        assert!(text.contains("could still be read"), "the work was done: {text}");
-        println!("{}", text.lines().find(|line| line.contains("could still be read")).unwrap_or_default());
+        println!("{}", line_of(part, "could still be read"));
     }
     println!("{FILES} files in {:.1} s", started.elapsed().as_secs_f64());
 }

@@ -16,7 +16,6 @@
 mod create;
 mod error;
 mod read;
-mod rows;
 mod scanner;
 mod syntax;
 #[cfg(test)]

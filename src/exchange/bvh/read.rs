@@ -8,12 +8,13 @@ use glam::DVec3;
 
 use crate::clip::{Clip, FrameGrid, JointTracks, Times};
 use crate::exchange::Note;
+use crate::exchange::rows::{JointColumns, Rows, TurnColumns};
+use crate::exchange::text_file::{NotUtf16, TextFile};
 use crate::exchange::turns::Turns;
 use crate::rotor::Axis;
 use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use super::error::{BvhError, BvhErrorKind};
-use super::rows::Rows;
 use super::scanner::{Scanner, Tally, is_line_end, quoted};
 use super::syntax::{Channel, JointSyntax, MotionHead, hierarchy, motion_head, skip_comments};
 
@@ -23,8 +24,8 @@ const USUAL_FRAME_SECS: f64 = 1.0 / 30.0;
 /// What is kept of a file so that it can be written again without touching what did not change.
 #[derive(Clone)]
 pub struct Document {
-    /// The file as it was.
-    pub(super) bytes: Arc<Vec<u8>>,
+    /// The file as it was, and its text.
+    pub(super) file: TextFile,
     /// The channels of each joint, in the order of a row's numbers.
     pub(super) channels: Vec<Vec<Channel>>,
     /// Where the motion part stands.
@@ -40,7 +41,7 @@ pub struct Document {
 impl fmt::Debug for Document {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         f.debug_struct("Document")
-            .field("bytes", &self.bytes.len())
+            .field("bytes", &self.file.bytes().len())
             .field("joints", &self.channels.len())
             .field("frames", &self.frames)
             .finish_non_exhaustive()
@@ -50,7 +51,7 @@ impl fmt::Debug for Document {
 impl Document {
     /// The file as it was.
     pub fn bytes(&self) -> &[u8] {
-        &self.bytes
+        self.file.bytes()
     }
 
     /// Numbers of one frame.
@@ -83,9 +84,13 @@ pub fn read<'b>(
     bytes: impl Into<Cow<'b, [u8]>>,
     name: &str,
 ) -> Result<(Document, Clip, Vec<Note>), BvhError> {
-    let owned = Arc::new(bytes.into().into_owned());
-    let bytes = owned.as_slice();
+    let file = TextFile::new(bytes.into().into_owned()).map_err(|NotUtf16 { line, column, found }| {
+        let kind = BvhErrorKind::Unexpected { expected: NotUtf16::EXPECTED.to_owned(), found };
+        BvhError { line, column, frame: None, joint: None, kind }
+    })?;
+    let bytes = file.text();
     let mut notes = Vec::new();
+    notes.extend(file.note());
     let body_start = if bytes.starts_with(b"\xEF\xBB\xBF") { 3 } else { 0 };
     let mut scanner = Scanner::new(bytes, body_start);
     if u32::try_from(bytes.len()).is_err() {
@@ -95,14 +100,14 @@ pub fn read<'b>(
     let head = motion_head(&mut scanner, &mut notes)?;
     let rows_start = scanner.pos();
     let mut document = Document {
-        bytes: Arc::clone(&owned),
+        file: file.clone(),
         channels: joints.iter().map(|joint| joint.channels.clone()).collect(),
         head,
         rows_start,
         frames: 0,
         decimal_comma: false,
     };
-    let mut rows = Rows::new(&joints, bytes.len());
+    let mut rows = Rows::new(joint_columns(&joints), document.columns(), file.bytes().len(), 0);
     if let Some(head) = &head {
         read_rows(&mut scanner, &document, &joints, head, &mut rows, &mut notes)?;
     } else {
@@ -114,6 +119,27 @@ pub fn read<'b>(
     about_numbers(&scanner, &document, &joints, rows.largest_deg, &mut notes);
     let clip = clip(rows, &joints, step_secs, name, &mut notes);
     Ok((document, clip, notes))
+}
+
+/// What the channels of each joint say of it.
+fn joint_columns(joints: &[JointSyntax]) -> Vec<JointColumns> {
+    let mut first = 0;
+    let mut all = Vec::with_capacity(joints.len());
+    for joint in joints {
+        let turns = turns_of(&joint.channels);
+        let groups = turns.groups.into_iter();
+        let absolute = |own: Vec<usize>| own.into_iter().map(|column| first + column).collect();
+        let turns = Turns { groups: groups.map(|(axis, own)| (axis, absolute(own))).collect() };
+        let mut place = [None; 3];
+        for (column, channel) in joint.channels.iter().enumerate() {
+            if let Channel::Position(axis) = channel {
+                place[axis.index()] = Some(first + column);
+            }
+        }
+        all.push(JointColumns { turn: TurnColumns::Angles(turns), place, rest: joint.offset });
+        first += joint.channels.len();
+    }
+    all
 }
 
 /// Reads the numbers of all complete frames into the tracks of the joints.
@@ -133,7 +159,7 @@ fn read_rows(
     // for if the rest is like what was read.
     let expected = |rows: &Rows, pos: usize| {
         let read = (pos - document.rows_start).max(1) as f64;
-        let whole = (document.bytes.len() - document.rows_start) as f64;
+        let whole = (document.file.text().len() - document.rows_start) as f64;
         let likely = ((rows.len() / columns.max(1)) as f64 * (whole / read)).ceil() as usize;
         if announced.abs_diff(likely) <= likely / 8 { announced } else { likely }
     };
@@ -218,13 +244,14 @@ fn in_motion(error: BvhError, index: usize, document: &Document, joints: &[Joint
 /// At the first such line, unless it is the last.
 fn uneven_line(document: &Document, joints: &[JointSyntax], end: usize) -> Result<(), BvhError> {
     let columns = document.columns();
-    let mut scanner = Scanner::new(document.bytes.get(..end).unwrap_or_default(), document.rows_start);
+    let text = document.file.text();
+    let mut scanner = Scanner::new(text.get(..end).unwrap_or_default(), document.rows_start);
     let (mut lines, mut even, mut first_uneven) = (0_usize, 0_usize, None);
     let (mut in_line, mut before, mut last_end) = (0_usize, 0_usize, document.rows_start);
     let mut is_last_uneven = false;
     loop {
         let number = scanner.number().ok().flatten();
-        let gap = number.map(|number| &document.bytes[last_end..number.start]);
+        let gap = number.map(|number| &text[last_end..number.start]);
         if gap.is_none_or(|gap| gap.iter().copied().any(is_line_end)) && in_line > 0 {
             lines += 1;
             is_last_uneven = false;
@@ -265,7 +292,7 @@ fn decimal_marks(
         return Ok(());
     }
     if scanner.oddities.points.count > 0 {
-        let rest = document.bytes.get(commas.first..).unwrap_or_default();
+        let rest = document.file.text().get(commas.first..).unwrap_or_default();
         let length = rest.iter().position(|&byte| super::scanner::is_blank(byte)).unwrap_or(rest.len());
         let kind = BvhErrorKind::TwoDecimalMarks(quoted(&rest[..length]).trim_matches('`').to_owned());
         return Err(scanner.error(commas.first, kind));
@@ -374,7 +401,8 @@ fn added_places(skeleton: &Skeleton, tracks: &[Arc<JointTracks>], notes: &mut Ve
     for (index, (joint, tracks)) in skeleton.joints().iter().zip(tracks).enumerate() {
         let (Some(_), Some(track)) = (joint.parent, &tracks.translation) else { continue };
         let offset = joint.rest.translation.length();
-        let mut lengths: Vec<f64> = track.keys.iter().map(|place| place.length()).collect();
+        let mut lengths: Vec<f64> =
+            (0..track.keys.len()).map(|key| track.keys.vector(key).length()).collect();
         let middle = lengths.len() / 2;
         let median = *lengths.select_nth_unstable_by(middle, f64::total_cmp).1;
         if offset > 0.0 && median < 0.05 * offset {

@@ -75,6 +75,38 @@ fn other_spellings_of_the_same_file_read_alike() {
 }
 
 #[test]
+fn utf_16_reads_alike_and_is_written_back_as_it_was() {
+    let encoded = |text: &str| -> Vec<u8> {
+        format!("\u{feff}{text}").encode_utf16().flat_map(u16::to_le_bytes).collect()
+    };
+    reads_alike(encoded(SMALL), &["line 1: expected UTF-8, found UTF-16: read so, and kept when writing"]);
+    let (document, clip, _) = opened(encoded(SMALL));
+    let track = clip.rotation(1).unwrap().with_angles(&[(1, [7.25, -5.5, -6.5])]);
+    let (written, _) = write(&document, &clip, &clip.with_rotation(1, track));
+    assert_eq!(written, encoded(&SMALL.replace("-4.5", "7.250000")));
+    let half: Vec<u8> = encoded(SMALL).into_iter().take(99).collect();
+    assert_eq!(
+        refused(&half),
+        "line 5, column 12: expected UTF-16 to the end, as the file's first two bytes say, found a single byte at the end of the file"
+    );
+}
+
+#[test]
+fn places_along_some_axes_and_turns_about_some_are_held_as_they_are() {
+    let (document, clip, _) =
+        opened(one_joint("4 Zposition Yrotation Xposition Zrotation", "3 10 -1.5 20\n4 11 -2.5 21\n"));
+    let places = clip.joints[1].translation.as_ref().unwrap();
+    assert_eq!(places.keys.vector(1).to_array(), [-2.5, 2.0, 4.0]);
+    let changed: Vec<glam::DVec3> = places.keys.iter().map(|place| *place + glam::DVec3::X).collect();
+    let mut edited = clip.clone();
+    std::sync::Arc::make_mut(&mut edited.joints[1]).translation =
+        Some(crate::clip::VectorTrack { keys: changed.into(), ..places.clone() });
+    let (written, notes) = write(&document, &clip, &edited);
+    assert_eq!(notes, []);
+    assert!(String::from_utf8(written).unwrap().ends_with("3 10 -0.500000 20\n4 11 -1.500000 21\n\n"));
+}
+
+#[test]
 fn a_frame_time_that_is_none_is_told() {
     for (written, found) in [("Frame Time: 0", "0"), ("Frame Time: -1", "-1"), ("Frame Time: nan", "NaN")] {
         let (_, clip, notes) = opened(SMALL.replace("Frame Time: 0.04", written));

@@ -21,7 +21,7 @@ use super::syntax::Channel;
 /// are written anew under the same hierarchy, again with the text of every number that is the same; a clip with another
 /// number of joints becomes a new file, as by [`from_clip`](super::from_clip).
 pub fn write(document: &Document, before: &Clip, after: &Clip) -> (Vec<u8>, Vec<Note>) {
-    let mut bytes = Vec::with_capacity(document.bytes.len() + 64);
+    let mut bytes = Vec::with_capacity(document.file.bytes().len() + 64);
     let notes = write_to(document, before, after, &mut bytes).unwrap_or_default();
     (bytes, notes)
 }
@@ -43,9 +43,26 @@ pub fn write_to(
         && (0..before.joints.len()).all(|joint| before.same_joint(after, joint));
     let same_grid = before.grid == after.grid && after.grid.count() == document.frames;
     if same_joints && same_grid {
-        out.write_all(&document.bytes)?;
+        out.write_all(document.file.bytes())?;
         return Ok(Vec::new());
     }
+    if document.file.is_plain() {
+        return write_text(document, before, after, same_grid, out);
+    }
+    let mut text = Vec::with_capacity(document.file.text().len() + 64);
+    let notes = write_text(document, before, after, same_grid, &mut text)?;
+    out.write_all(&document.file.encoded(text))?;
+    Ok(notes)
+}
+
+/// The changed text.
+fn write_text(
+    document: &Document,
+    before: &Clip,
+    after: &Clip,
+    same_grid: bool,
+    out: &mut dyn Write,
+) -> io::Result<Vec<Note>> {
     let joints = document.first_columns().into_iter().enumerate();
     let mut joints: Vec<JointRows<'_>> = joints
         .filter(|&(joint, _)| !(same_grid && before.same_joint(after, joint)))
@@ -68,7 +85,7 @@ struct Numbers<'a> {
 
 impl<'a> Numbers<'a> {
     fn new(document: &'a Document) -> Self {
-        let scanner = Scanner::new(&document.bytes, document.rows_start);
+        let scanner = Scanner::new(document.file.text(), document.rows_start);
         Self { scanner, columns: document.columns(), row: Vec::new() }
     }
 
@@ -200,7 +217,8 @@ impl<'a> JointRows<'a> {
         let open: Vec<usize> =
             self.changed.iter().copied().filter(|&frame| self.own(frame).is_none()).collect();
         let sound = |frame: usize| {
-            let triple = self.stored?.degrees.get(frame)?;
+            let degrees = &self.stored?.degrees;
+            let triple = (frame < degrees.len()).then(|| degrees.triple(frame))?;
             triple.iter().all(|angle| angle.is_finite()).then(|| triple.map(f64::to_radians))
         };
         let mut found: Vec<(usize, [f64; 3])> = Vec::with_capacity(open.len());
@@ -218,14 +236,15 @@ impl<'a> JointRows<'a> {
     /// The turn that is to be written at a frame.
     fn wanted(&self, frame: usize) -> Rotor {
         let Some(track) = self.track else { return Rotor::IDENTITY };
-        if self.keyed { track.keys[frame] } else { track.at(self.after.grid.time(frame)) }
+        if self.keyed { track.keys.rotor(frame) } else { track.at(self.after.grid.time(frame)) }
     }
 
     /// The file's own angles at a frame, where the channels can say them.
-    fn own(&self, frame: usize) -> Option<&[f64]> {
-        let degrees = self.stored?.degrees.get(frame)?;
-        let (own, rest) = degrees.split_at(self.turns.groups.len().min(3));
-        rest.iter().all(|&angle| angle == 0.0).then_some(own)
+    fn own(&self, frame: usize) -> Option<[f64; 3]> {
+        let degrees = &self.stored?.degrees;
+        let triple = (frame < degrees.len()).then(|| degrees.triple(frame))?;
+        let beyond = self.turns.groups.len().min(3);
+        triple[beyond..].iter().all(|&angle| angle == 0.0).then_some(triple)
     }
 
     /// Puts what changed at a frame into its row. To be called for the frames in order.
@@ -263,7 +282,7 @@ impl<'a> JointRows<'a> {
         self.next_found += usize::from(found.is_some());
         let angles: Vec<f64> = match (self.own(frame), found) {
             // The numbers go in as they are, missing ones too.
-            (Some(own), _) => own.to_vec(),
+            (Some(own), _) => own[..self.turns.groups.len().min(3)].to_vec(),
             _ if !wanted.is_finite() => {
                 self.unsound += 1;
                 return;
@@ -326,10 +345,14 @@ impl<'a> JointRows<'a> {
 
 impl PlaceRows<'_> {
     fn put(&mut self, frame: usize, row: &mut [f64], after: &Clip, same_grid: bool) {
-        let place =
-            if self.keyed { Some(self.track.keys[frame]) } else { self.track.at(after.grid.time(frame)) };
+        let place = if self.keyed {
+            Some(self.track.keys.vector(frame))
+        } else {
+            self.track.at(after.grid.time(frame))
+        };
         let Some(place) = place else { return };
-        if same_grid && self.keyed && self.old.and_then(|old| old.keys.get(frame)) == Some(&place) {
+        let is_old = |old: &VectorTrack| frame < old.keys.len() && old.keys.vector(frame) == place;
+        if same_grid && self.keyed && self.old.is_some_and(is_old) {
             return;
         }
         for axis in 0..3 {
@@ -351,7 +374,7 @@ fn sum(row: &[f64], columns: &[usize]) -> f64 {
 
 /// The document with the numbers that differ from it.
 fn patch(document: &Document, joints: &mut [JointRows<'_>], out: &mut dyn Write) -> io::Result<()> {
-    let source = &document.bytes[..];
+    let source = document.file.text();
     let mut numbers = Numbers::new(document);
     let mut bytes = Vec::with_capacity(PORTION + PORTION / 4);
     let mut values: Vec<f64> = Vec::with_capacity(document.columns());
@@ -398,7 +421,7 @@ fn rewrite(
     joints: &mut [JointRows<'_>],
     out: &mut dyn Write,
 ) -> io::Result<()> {
-    let source = &document.bytes[..];
+    let source = document.file.text();
     let line_end: &[u8] = match source.iter().position(|byte| matches!(byte, b'\r' | b'\n')) {
         Some(at) if source[at..].starts_with(b"\r\n") => b"\r\n",
         Some(at) if source[at] == b'\r' => b"\r",

@@ -1,15 +1,16 @@
 //! The skeleton of a CSV clip: comment lines before the header, or a file of its own beside it.
 
-use std::collections::HashMap;
+use std::collections::{HashMap, HashSet};
 
 use glam::DVec3;
 
 use crate::exchange::Note;
 use crate::exchange::decimal::is_measure;
+use crate::exchange::text_file::TextFile;
 use crate::rotor::Rotor;
-use crate::skeleton::{Joint, JointKind, Transform};
+use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
 
-use super::cells::{Dialect, Records, comma_number, number, quoted, shown, text};
+use super::cells::{Dialect, Records, comma_number, decoded, number, quoted, shown, text};
 use super::error::{CsvError, CsvErrorKind};
 
 /// Joints of one file that are read.
@@ -39,6 +40,8 @@ pub struct Bone {
 /// When a column is missing or a cell is no number.
 pub fn hierarchy(bytes: &[u8]) -> Result<Vec<Bone>, CsvError> {
     const COLUMNS: [&str; 5] = ["joint", "parent", "offset.x", "offset.y", "offset.z"];
+    let text_bytes = TextFile::text_of(bytes)?;
+    let bytes = &*text_bytes;
     let mut records = Records::new(bytes);
     while records.comment().is_some() {}
     if !records.header()? {
@@ -89,6 +92,44 @@ pub fn hierarchy(bytes: &[u8]) -> Result<Vec<Bone>, CsvError> {
         });
     }
     Ok(bones)
+}
+
+/// Whether a table brings its skeleton along, in lines before its header.
+pub fn has_skeleton(bytes: &[u8]) -> bool {
+    let Ok(text) = TextFile::text_of(bytes) else { return false };
+    let mut records = Records::new(&text);
+    while let Some(comment) = records.comment() {
+        if bone(&decoded(comment), records.line).is_some() {
+            return true;
+        }
+    }
+    false
+}
+
+/// The skeleton of another clip, for a table whose columns bear the names of its joints.
+pub fn bones_of(skeleton: &Skeleton) -> Vec<Bone> {
+    let label = |joint: usize| skeleton.label(joint).to_owned();
+    let mut bones = Vec::with_capacity(skeleton.len());
+    for (index, joint) in skeleton.joints().iter().enumerate() {
+        let bone = |name: String, parent: Option<String>, rest: Transform| Bone {
+            name,
+            parent,
+            rest,
+            kind: joint.kind,
+            may_be_tip: false,
+            line: 1,
+        };
+        bones.push(bone(label(index), joint.parent.map(label), joint.rest));
+        for (tip, place) in joint.tips.iter().enumerate() {
+            let rest = Transform::from_translation(*place);
+            let own = bone(format!("{}_tip{tip}", label(index)), Some(label(index)), rest);
+            bones.push(Bone { may_be_tip: true, kind: JointKind::Joint, ..own });
+        }
+    }
+    // A tip whose made-up name is a joint's is left out: it would be taken for that one.
+    let mut seen: HashSet<String> = skeleton.joints().iter().enumerate().map(|(own, _)| label(own)).collect();
+    bones.retain(|bone| !bone.may_be_tip || seen.insert(bone.name.clone()));
+    bones
 }
 
 /// Reads `# joint NAME parent NAME offset X Y Z`; after it may stand `turn X Y Z W` (the rest rotation as a quaternion)
@@ -164,7 +205,7 @@ pub(super) fn assemble(
             return Err(CsvError::unexpected(bone.line, "each joint once", quoted(&bone.name)));
         }
     }
-    let has_column: std::collections::HashSet<&str> = columns.iter().map(String::as_str).collect();
+    let has_column: HashSet<&str> = columns.iter().map(String::as_str).collect();
     let mut children: Vec<Vec<usize>> = vec![Vec::new(); bones.len()];
     let mut roots = Vec::new();
     for (index, bone) in bones.iter().enumerate() {

@@ -1,7 +1,8 @@
 //! What each column of a CSV clip is for.
 
-use std::collections::HashMap;
+use std::collections::{HashMap, HashSet};
 use std::fmt;
+use std::path::PathBuf;
 use std::str::FromStr;
 
 use crate::exchange::Note;
@@ -18,8 +19,11 @@ pub struct CsvOptions {
     pub columns: Option<NamedColumns>,
     /// The unit of the time column; seconds, or what its header says, where not given.
     pub time_unit: Option<TimeUnit>,
-    /// A skeleton from a file of its own ([`super::hierarchy`]); the text's own lines come first.
+    /// A skeleton from a file of its own ([`super::hierarchy`]) or of another clip ([`super::bones_of`]); the text's own lines
+    /// come first.
     pub hierarchy: Option<Vec<Bone>>,
+    /// The file that it is to be taken from, where it is not at hand.
+    pub skeleton: Option<PathBuf>,
 }
 
 /// The names of the columns that hold the time and the quaternion of one joint: `time=…,w=…,x=…,y=…,z=…`.
@@ -113,7 +117,7 @@ impl FromStr for TimeUnit {
 }
 
 /// What one column holds.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
 pub(super) enum Role {
     /// The time of the row.
     Time,
@@ -168,6 +172,7 @@ pub(super) fn columns(
     let mut joints: Vec<String> = Vec::new();
     let mut numbers: HashMap<&str, usize> = HashMap::new();
     let mut roles = Vec::with_capacity(header.len());
+    let mut said: HashSet<Role> = HashSet::new();
     for (column, name) in header.iter().enumerate() {
         let role = |joint: usize, part: &str| {
             Some(match part.to_ascii_lowercase().as_str() {
@@ -204,6 +209,12 @@ pub(super) fn columns(
                 Role::Unused
             }
         });
+        // `a.qx` and `a.QX` are two names of one thing.
+        if let Some(role) = roles.last().filter(|role| !matches!(role, Role::Time | Role::Unused))
+            && !said.insert(*role)
+        {
+            return Err(CsvError::unexpected(line, "each part of a joint once", quoted(name)).in_column(name));
+        }
         if joints.len() > MAX_JOINTS {
             let kind = CsvErrorKind::TooManyJoints { limit: MAX_JOINTS };
             return Err(CsvError { line, column: Some(name.clone()), kind });

@@ -55,8 +55,9 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
             };
             let rest = skeleton.joints()[joint].rest;
             if let Some(track) = &clip.joints[joint].translation {
-                let key = if track.times == clip.grid.times { track.keys.get(frame).copied() } else { None };
-                let place = key.or_else(|| track.at(time)).unwrap_or(rest.translation);
+                let is_keyed = track.times == clip.grid.times && frame < track.keys.len();
+                let key = if is_keyed { Some(track.keys.vector(frame)) } else { track.at(time) };
+                let place = key.unwrap_or(rest.translation);
                 place.to_array().into_iter().for_each(&mut put);
             }
             if has_turns(joint) {
@@ -72,8 +73,8 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
 }
 
 fn turn(clip: &Clip, track: &RotationTrack, frame: usize, time: f64) -> Rotor {
-    let key = if track.times == clip.grid.times { track.keys.get(frame).copied() } else { None };
-    key.unwrap_or_else(|| track.at(time))
+    let is_keyed = track.times == clip.grid.times && frame < track.keys.len();
+    if is_keyed { track.keys.rotor(frame) } else { track.at(time) }
 }
 
 /// The lines of a joint and its tips.

@@ -2,6 +2,8 @@
 
 use std::fmt;
 
+use crate::exchange::text_file::NotUtf16;
+
 /// What is wrong, and where. The message says what was expected and what was found.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct CsvError {
@@ -30,6 +32,14 @@ pub enum CsvErrorKind {
         /// The most that is read.
         limit: usize,
     },
+    /// The tracks would take far more memory than the text.
+    #[error(
+        "expected motion that takes at most {most_mb} MB in a file of this size, found more; cut the file into shorter ones"
+    )]
+    TooManyNumbers {
+        /// The most that is made of such a file.
+        most_mb: usize,
+    },
     /// Places in the text no longer fit their numbers.
     #[error("expected a file below 4 GiB, found {0} bytes")]
     TooLarge(usize),
@@ -45,6 +55,12 @@ impl CsvError {
     /// The same in a column.
     pub(super) fn in_column(self, column: &str) -> Self {
         Self { column: Some(column.to_owned()), ..self }
+    }
+}
+
+impl From<NotUtf16> for CsvError {
+    fn from(NotUtf16 { line, found, .. }: NotUtf16) -> Self {
+        Self::unexpected(line, NotUtf16::EXPECTED, found)
     }
 }
 

@@ -9,8 +9,8 @@
 //! | `NAME.tx .ty .tz` | place relative to the parent; what is missing is the rest place |
 //!
 //! Turns are relative to the parent. Lines `# joint NAME parent NAME offset X Y Z` before the header carry the skeleton;
-//! without them every joint is a root, unless a `NAME_hierarchy.csv` is given beside a `NAME_rot.csv`. Each row is a
-//! frame, at its own time. A quaternion sensor's `Time (s),W,X,Y,Z` is read as one joint.
+//! without them every joint is a root, unless a skeleton is given in a file of its own or by another clip. Each row is a
+//! frame, at its own time; of rows at the very same time the last is used. A quaternion sensor's `Time (s),W,X,Y,Z` is read as one joint.
 //!
 //! Where the header has semicolons or tabs between its names, cells are parted by these, and numbers may have a decimal comma
 //! in place of the point: one of the two in a whole file.
@@ -25,7 +25,7 @@ mod read;
 mod tests;
 mod write;
 
-pub use bones::{Bone, hierarchy};
+pub use bones::{Bone, bones_of, has_skeleton, hierarchy};
 pub use columns::{CsvOptions, NamedColumns, NoColumns, NoTimeUnit, TimeUnit};
 pub use create::from_clip;
 pub use error::{CsvError, CsvErrorKind};

@@ -6,11 +6,13 @@ use std::sync::Arc;
 
 use glam::DVec3;
 
-use crate::clip::{Clip, FileAngles, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
+use crate::clip::{Clip, FrameGrid, Times};
 use crate::exchange::Note;
 use crate::exchange::decimal::is_measure;
+use crate::exchange::rows::{JointColumns, Rows, TurnColumns};
+use crate::exchange::text_file::TextFile;
 use crate::exchange::turns::Turns;
-use crate::rotor::{Axis, Rotor};
+use crate::rotor::Axis;
 use crate::skeleton::{Skeleton, SkeletonError};
 
 use super::bones::{assemble, bone};
@@ -27,16 +29,18 @@ const LATEST_START_SECS: f64 = 86_400.0;
 /// What is kept of a file so that it can be written again without touching what did not change.
 #[derive(Clone)]
 pub struct Document {
-    /// The file as it was.
-    pub(super) bytes: Arc<Vec<u8>>,
+    /// The file as it was, and its text.
+    pub(super) file: TextFile,
     /// What the columns are for; joints as indices in the skeleton.
     pub(super) columns: Columns,
     /// First byte after the header.
     pub(super) rows_start: usize,
-    /// Rows that were read.
+    /// Rows that are used.
     pub(super) rows: usize,
-    /// Seconds that were taken from every time.
-    pub(super) start_secs: f64,
+    /// Rows that are not, as the next has the very same time; counted among all, ascending.
+    pub(super) repeated: Vec<u32>,
+    /// What was taken from every time, in the unit of the file.
+    pub(super) start: f64,
     /// What stands between cells and in numbers.
     pub(super) dialect: Dialect,
 }
@@ -44,7 +48,7 @@ pub struct Document {
 impl fmt::Debug for Document {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         f.debug_struct("Document")
-            .field("bytes", &self.bytes.len())
+            .field("bytes", &self.file.bytes().len())
             .field("columns", &self.columns.roles.len())
             .field("rows", &self.rows)
             .finish_non_exhaustive()
@@ -54,7 +58,7 @@ impl fmt::Debug for Document {
 impl Document {
     /// The file as it was.
     pub fn bytes(&self) -> &[u8] {
-        &self.bytes
+        self.file.bytes()
     }
 
     /// The columns of a joint's angles in their order.
@@ -71,22 +75,23 @@ fn turns_of(roles: &[Role], joint: usize) -> Turns {
 }
 
 /// Reads a CSV text; see the module for its columns. `name` becomes the clip's name. Cells that are empty or not finite
-/// become NaN. A file without rows gives a clip of no frames.
+/// become NaN. Of rows at the very same time the last is used. A file without rows gives a clip of no frames.
 ///
 /// # Errors
-/// When the header is not understood, a cell is no number, a row is short or long, or times do not rise; with line and
+/// When the header is not understood, a cell is no number, a row is short or long, or times go back; with line and
 /// column.
 pub fn read<'b>(
     bytes: impl Into<Cow<'b, [u8]>>,
     name: &str,
     options: &CsvOptions,
 ) -> Result<(Document, Clip, Vec<Note>), CsvError> {
-    let owned = Arc::new(bytes.into().into_owned());
-    let bytes = owned.as_slice();
+    let file = TextFile::new(bytes.into().into_owned()).map_err(CsvError::from)?;
+    let bytes = file.text();
     if u32::try_from(bytes.len()).is_err() {
         return Err(CsvError { line: 1, column: None, kind: CsvErrorKind::TooLarge(bytes.len()) });
     }
     let mut notes = Vec::new();
+    notes.extend(file.note());
     let mut records = Records::new(bytes);
     let mut bones = Vec::new();
     while let Some(comment) = records.comment() {
@@ -112,11 +117,8 @@ pub fn read<'b>(
     let header: Vec<String> = records.cells.iter().map(|&cell| text(bytes, cell).into_owned()).collect();
     let mut columns = columns(&header, header_line, options, &mut notes)?;
     let rows_start = records.pos();
-    let values = rows(bytes, &mut records, &header, &columns, &mut notes)?;
-    let width = header.len();
-    refuse_places(&columns, &values, header_line)?;
-
     let (joints, indices) = assemble(&columns.joints, &bones, &mut notes)?;
+    let mut places = Places::new(&columns);
     for role in &mut columns.roles {
         match role {
             Role::Quaternion(joint, _)
@@ -131,14 +133,43 @@ pub fn read<'b>(
     let skeleton = Skeleton::new(joints).map_err(|SkeletonError::ParentNotBefore { name, .. }| {
         CsvError::unexpected(header_line, "parents before children", quoted(&name))
     })?;
-    let (times, start_secs) = times(&columns, &values, width, &mut notes);
-    let rows = times.len();
-    if rows == 0 {
+    // A row's time is there twice when the list is shared at the end.
+    let kept_bytes = 2 * size_of::<f64>();
+    let mut rows =
+        Rows::new(joint_columns(&columns, &skeleton), header.len(), file.bytes().len(), kept_bytes);
+    let mut table = Table {
+        bytes,
+        header: &header,
+        columns: &columns,
+        times: Vec::new(),
+        repeated: Vec::new(),
+        first_repeated_line: 0,
+        missing: 0,
+        first_missing_line: 0,
+        mark: None,
+    };
+    table.read(&mut records, &mut rows, &mut places)?;
+    table.tell(&mut notes);
+    records.dialect.decimal_comma = table.mark == Some(b',');
+    let Table { times: stored_times, repeated, .. } = table;
+    places.refuse(&columns.joints, header_line)?;
+    let (times, start) = times(&columns, stored_times, &mut notes);
+    let count = times.len();
+    if count == 0 {
         notes.push(Note::new("end of file", "expected rows, found none: a skeleton without a clip"));
     }
+    let duration_secs = times.last().copied().unwrap_or(0.0);
+    let times = Times::Listed(times.into());
+    let clip = Clip {
+        name: name.to_owned(),
+        joints: rows.finish(&times),
+        skeleton: Arc::new(skeleton),
+        grid: FrameGrid { rate: times.median_step().map_or(USUAL_RATE, |step| 1.0 / step), times },
+        duration_secs,
+    };
     let dialect = records.dialect;
-    let document = Document { bytes: Arc::clone(&owned), columns, rows_start, rows, start_secs, dialect };
-    let clip = clip(&document, skeleton, &values, width, times, name);
+    let document =
+        Document { file: file.clone(), columns, rows_start, rows: count, repeated, start, dialect };
     Ok((document, clip, notes))
 }
 
@@ -147,29 +178,66 @@ pub fn read<'b>(
 /// # Errors
 /// When a quote is not closed.
 pub fn header(bytes: &[u8]) -> Result<Vec<String>, CsvError> {
+    let text_bytes = TextFile::text_of(bytes)?;
+    let bytes = &*text_bytes;
     let mut records = Records::new(bytes);
     while records.comment().is_some() {}
     records.header()?;
     Ok(records.cells.iter().map(|&cell| text(bytes, cell).into_owned()).collect())
 }
 
-/// All cells, row by row; NaN where a column is not used.
-fn rows(
-    bytes: &[u8],
-    records: &mut Records<'_>,
-    header: &[String],
-    columns: &Columns,
-    notes: &mut Vec<Note>,
-) -> Result<Vec<f64>, CsvError> {
-    let mut values: Vec<f64> = Vec::new();
-    let (mut missing, mut first_missing) = (0_usize, 0);
-    let mut before = f64::NEG_INFINITY;
-    // Between commas a comma in quotes would be a thousands mark as likely as a decimal one.
-    let may_have_commas = records.dialect.separator != b',';
-    let mut mark: Option<u8> = None;
-    while records.next()? {
+/// What the columns say of each joint of the skeleton.
+fn joint_columns(columns: &Columns, skeleton: &Skeleton) -> Vec<JointColumns> {
+    let mut quaternions = vec![[None; 4]; skeleton.len()];
+    let mut planes = vec![[None; 3]; skeleton.len()];
+    let mut places = vec![[None; 3]; skeleton.len()];
+    let mut angles: Vec<Vec<(usize, Axis)>> = vec![Vec::new(); skeleton.len()];
+    for (column, role) in columns.roles.iter().enumerate() {
+        match *role {
+            Role::Quaternion(joint, part) => quaternions[joint][part] = Some(column),
+            Role::Plane(joint, part) => planes[joint][part] = Some(column),
+            Role::Place(joint, axis) => places[joint][axis.index()] = Some(column),
+            Role::Angle(joint, axis) => angles[joint].push((column, axis)),
+            Role::Time | Role::Unused => {}
+        }
+    }
+    let of_joint = |(joint, angles): (usize, Vec<(usize, Axis)>)| {
+        let turn = match (quaternions[joint], planes[joint]) {
+            ([Some(x), Some(y), Some(z), Some(w)], _) => TurnColumns::Quaternion([x, y, z, w]),
+            (_, [Some(yz), Some(zx), Some(xy)]) => TurnColumns::Planes([yz, zx, xy]),
+            _ if angles.is_empty() => TurnColumns::None,
+            _ => TurnColumns::Angles(Turns::new(angles)),
+        };
+        let rest = skeleton.joints()[joint].rest.translation.to_array();
+        JointColumns { turn, place: places[joint], rest }
+    };
+    angles.into_iter().enumerate().map(of_joint).collect()
+}
+
+/// The rows of a table, one after the other.
+struct Table<'a> {
+    bytes: &'a [u8],
+    header: &'a [String],
+    columns: &'a Columns,
+    /// The time of each row that is used, as it stands there.
+    times: Vec<f64>,
+    /// Rows that are passed over, since the next has the very same time.
+    repeated: Vec<u32>,
+    first_repeated_line: u32,
+    missing: usize,
+    first_missing_line: u32,
+    /// The decimal mark that was found.
+    mark: Option<u8>,
+}
+
+impl Table<'_> {
+    /// The numbers of the record last given; NaN where a column is not used. And its time.
+    fn row(&mut self, records: &Records<'_>, row: &mut Vec<f64>) -> Result<f64, CsvError> {
+        let Self { bytes, header, columns, .. } = *self;
         let line = records.line;
         let cells = &records.cells;
+        // Between commas a comma in quotes would be a thousands mark as likely as a decimal one.
+        let may_have_commas = records.dialect.separator != b',';
         let surplus = cells.get(header.len()..).unwrap_or_default();
         if cells.len() < header.len() || surplus.iter().any(|cell| cell.start < cell.end) {
             let expected = format!("{} cells as in the header", header.len());
@@ -179,9 +247,11 @@ fn rows(
                 None => error,
             });
         }
+        let mut time = f64::NAN;
+        row.clear();
         for ((&cell, role), name) in cells.iter().zip(&columns.roles).zip(header) {
             if *role == Role::Unused {
-                values.push(f64::NAN);
+                row.push(f64::NAN);
                 continue;
             }
             let with_comma = || comma_number(bytes, cell).filter(|_| may_have_commas);
@@ -190,7 +260,7 @@ fn rows(
                 .ok_or_else(|| CsvError::unexpected(line, "a number", shown(bytes, cell)).in_column(name))?;
             let found = bytes[cell.start..cell.end].iter().find(|byte| matches!(byte, b'.' | b','));
             if let Some(&found) = found.filter(|_| may_have_commas && value.is_finite())
-                && *mark.get_or_insert(found) != found
+                && *self.mark.get_or_insert(found) != found
             {
                 let expected = "one decimal mark in the whole file";
                 let found = format!("points and commas, the other one in {}", shown(bytes, cell));
@@ -201,165 +271,185 @@ fn rows(
                     let expected = "a finite time";
                     return Err(CsvError::unexpected(line, expected, shown(bytes, cell)).in_column(name));
                 }
-                if value <= before {
-                    let expected = format!("a time after {before}");
+                if let Some(before) = self.times.last().filter(|&&before| value < before) {
+                    let expected = format!("a time of {before} or later");
                     return Err(CsvError::unexpected(line, expected, shown(bytes, cell)).in_column(name));
                 }
-                before = value;
+                time = value;
             } else if value.is_nan() {
-                missing += 1;
-                if missing == 1 {
-                    first_missing = line;
+                self.missing += 1;
+                if self.missing == 1 {
+                    self.first_missing_line = line;
                 }
             }
-            values.push(value);
+            row.push(value);
+        }
+        Ok(time)
+    }
+
+    /// Reads all rows into the tracks. Of rows at the very same time the last one counts.
+    fn read(
+        &mut self,
+        records: &mut Records<'_>,
+        rows: &mut Rows,
+        places: &mut Places,
+    ) -> Result<(), CsvError> {
+        let start = records.pos();
+        let whole = self.bytes.len().saturating_sub(start);
+        // How many rows there will be if the rest is like what was read.
+        let expected = |rows: usize, pos: usize| {
+            let share = whole as f64 / pos.saturating_sub(start).max(1) as f64;
+            (rows as f64 * share).ceil() as usize
+        };
+        let too_many = |line: u32, most_bytes: usize| {
+            let kind = CsvErrorKind::TooManyNumbers { most_mb: most_bytes >> 20 };
+            CsvError { line, column: None, kind }
+        };
+        let (mut row, mut before) = (Vec::with_capacity(self.header.len()), Vec::new());
+        // A row has a byte at least, and the file fewer than 2³² of them.
+        let mut count = 0_u32;
+        while records.next()? {
+            let time = self.row(records, &mut row)?;
+            let line = records.line;
+            if self.times.last() == Some(&time) {
+                if self.repeated.is_empty() {
+                    self.first_repeated_line = line;
+                }
+                self.repeated.push(count - 1);
+            } else {
+                self.times.push(time);
+                // The row before is known to stay only now.
+                if count > 0 {
+                    places.add(&before);
+                    rows.tile.extend_from_slice(&before);
+                }
+                if rows.tile.len() >= rows.tile_len {
+                    let expected = expected(self.times.len(), records.pos());
+                    if self.times.capacity() < expected {
+                        self.times.reserve_exact((expected + expected / 16).saturating_sub(self.times.len()));
+                    }
+                    rows.hand_out(expected).map_err(|most| too_many(line, most))?;
+                }
+            }
+            std::mem::swap(&mut row, &mut before);
+            count += 1;
+        }
+        if count > 0 {
+            places.add(&before);
+            rows.tile.extend_from_slice(&before);
+        }
+        rows.hand_out(self.times.len()).map_err(|most| too_many(records.line, most))
+    }
+
+    /// Tells what was odd.
+    fn tell(&self, notes: &mut Vec<Note>) {
+        if self.mark == Some(b',') {
+            notes.push(Note::new("rows", "expected decimal points, found decimal commas: read as points"));
+        }
+        if self.missing > 0 {
+            let text = format!(
+                "expected finite numbers, found {} cells that are not: those are missing",
+                self.missing
+            );
+            notes.push(Note::new(format!("line {}", self.first_missing_line), text));
+        }
+        if !self.repeated.is_empty() {
+            let text = format!(
+                "expected rising times, found {} rows at the time of the row before: of each time the last row is used, the others are left as they are",
+                self.repeated.len()
+            );
+            notes.push(Note::new(format!("line {}", self.first_repeated_line), text));
         }
     }
-    if mark == Some(b',') {
-        records.dialect.decimal_comma = true;
-        notes.push(Note::new("rows", "expected decimal points, found decimal commas: read as points"));
-    }
-    if missing > 0 {
-        let text = format!("expected finite numbers, found {missing} cells that are not: those are missing");
-        notes.push(Note::new(format!("line {first_missing}"), text));
-    }
-    Ok(values)
 }
 
-/// The times in seconds, and how much was taken from them.
-fn times(columns: &Columns, values: &[f64], width: usize, notes: &mut Vec<Note>) -> (Vec<f64>, f64) {
-    let Some(column) = columns.roles.iter().position(|role| *role == Role::Time) else {
-        return (Vec::new(), 0.0);
-    };
+/// The times in seconds, and how much was taken from them in the unit of the file.
+fn times(columns: &Columns, mut times: Vec<f64>, notes: &mut Vec<Note>) -> (Vec<f64>, f64) {
     let scale = columns.unit.in_a_second();
-    let mut times: Vec<f64> = values.chunks_exact(width).map(|row| row[column] / scale).collect();
     let first = times.first().copied().unwrap_or(0.0);
-    let start_secs = if (0.0..LATEST_START_SECS).contains(&first) { 0.0 } else { first };
-    if start_secs != 0.0 {
-        for time in &mut times {
-            *time -= start_secs;
-        }
-        let text = format!("expected times from 0 on, found {first} s first: counted from the first row");
+    let is_clock = !(0.0..LATEST_START_SECS).contains(&(first / scale));
+    // Taken away before the unit is changed: of a clock's microseconds the last would be rounded off.
+    let start = if is_clock { first } else { 0.0 };
+    for time in &mut times {
+        *time = (*time - start) / scale;
+    }
+    if is_clock {
+        let text =
+            format!("expected times from 0 on, found {} s first: counted from the first row", first / scale);
         notes.push(Note::new("times", text));
     }
-    (times, start_secs)
-}
-
-fn clip(
-    document: &Document,
-    skeleton: Skeleton,
-    values: &[f64],
-    width: usize,
-    times: Vec<f64>,
-    name: &str,
-) -> Clip {
-    let duration_secs = times.last().copied().unwrap_or(0.0);
-    let times = Times::Listed(times.into());
-    let rows = || values.chunks_exact(width);
-    let roles = &document.columns.roles;
-    let mut quaternions = vec![[None; 4]; skeleton.len()];
-    let mut planes = vec![[None; 3]; skeleton.len()];
-    let mut places = vec![[None; 3]; skeleton.len()];
-    let mut has_angles = vec![false; skeleton.len()];
-    for (column, role) in roles.iter().enumerate() {
-        match *role {
-            Role::Quaternion(joint, part) => quaternions[joint][part] = Some(column),
-            Role::Plane(joint, part) => planes[joint][part] = Some(column),
-            Role::Place(joint, axis) => places[joint][axis.index()] = Some(column),
-            Role::Angle(joint, _) => has_angles[joint] = true,
-            Role::Time | Role::Unused => {}
-        }
-    }
-    let cell = |row: &[f64], column: Option<usize>| column.map_or(0.0, |column| row[column]);
-    let tracks = |joint: usize| {
-        let turns = if has_angles[joint] { document.turns(joint) } else { Turns { groups: Vec::new() } };
-        let rotation = if document.rows == 0 {
-            None
-        } else if quaternions[joint][0].is_some() {
-            let key = |row: &[f64]| Rotor::from_xyzw(quaternions[joint].map(|column| cell(row, column)));
-            let keys: Arc<[Rotor]> = rows().map(key).collect();
-            Some(RotationTrack::from_rotors(times.clone(), keys))
-        } else if planes[joint][0].is_some() {
-            let degrees = rows().map(|row| planes[joint].map(|column| cell(row, column))).collect();
-            Some(RotationTrack::from_plane_angles(times.clone(), degrees))
-        } else {
-            turns.order().map(|order| {
-                let columns: [Option<usize>; 3] =
-                    std::array::from_fn(|i| turns.groups.get(i).and_then(|group| group.1.first().copied()));
-                let degrees = rows().map(|row| columns.map(|column| cell(row, column))).collect();
-                let axes: Vec<Axis> = turns.axes().collect();
-                RotationTrack::from_angles(times.clone(), FileAngles { axes, order, degrees })
-            })
-        };
-        let rest = skeleton.joints()[joint].rest.translation;
-        let is_placed = document.rows > 0 && places[joint].iter().any(Option::is_some);
-        let translation = is_placed.then(|| {
-            let place = |row: &[f64]| {
-                let part = |axis: usize| places[joint][axis].map_or(rest[axis], |column| row[column]);
-                DVec3::new(part(0), part(1), part(2))
-            };
-            let keys: Arc<[DVec3]> = rows().map(place).collect();
-            VectorTrack::straight(times.clone(), keys)
-        });
-        Arc::new(JointTracks { rotation, translation, scale: None })
-    };
-    let joints = (0..skeleton.len()).map(tracks).collect();
-    let rate = times.median_step().map_or(USUAL_RATE, |step| 1.0 / step);
-    Clip {
-        name: name.to_owned(),
-        joints,
-        skeleton: Arc::new(skeleton),
-        grid: FrameGrid { times, rate },
-        duration_secs,
-    }
+    (times, start)
 }
 
 /// Places of joints have the same headers as angles about x, y and z. They give themselves away: limbs keep their length
 /// while both ends move. No two joints' angles do that.
-fn refuse_places(columns: &Columns, values: &[f64], line: u32) -> Result<(), CsvError> {
-    let width = columns.roles.len();
-    let mut triples: Vec<[Option<usize>; 3]> = vec![[None; 3]; columns.joints.len()];
-    for (column, role) in columns.roles.iter().enumerate() {
-        if let Role::Angle(joint, axis) = role {
-            triples[*joint][axis.index()] = Some(column);
-        }
-    }
-    let points: Vec<(usize, [usize; 3])> = triples
-        .iter()
-        .enumerate()
-        .filter_map(|(joint, triple)| Some((joint, [triple[0]?, triple[1]?, triple[2]?])))
-        .collect();
-    let place = |row: &[f64], columns: [usize; 3]| DVec3::from_array(columns.map(|column| row[column]));
-    let mut stiff = None;
-    let (mut stiff_count, mut moving_count) = (0, 0);
-    for pair in points.windows(2) {
-        let [(joint, from), (next, to)] = [pair[0], pair[1]];
-        let mut rows = values.chunks_exact(width);
-        let Some(first) = rows.next() else { return Ok(()) };
-        let (start, length) = (place(first, from), place(first, from).distance(place(first, to)));
-        let (mut moved, mut stretched, mut turned) = (0.0_f64, 0.0_f64, 0.0_f64);
-        for row in rows {
-            let (a, b) = (place(row, from), place(row, to));
-            moved = moved.max(a.distance(start));
-            stretched = stretched.max((a.distance(b) - length).abs());
-            turned = turned.max(((b - a) - (place(first, to) - start)).length());
-        }
-        if length > 0.0 && moved > 0.01 * length && turned > 0.01 * length {
-            moving_count += 1;
-            if stretched < 1e-3 * length {
-                stiff_count += 1;
-                stiff.get_or_insert((joint, next, length));
+struct Places {
+    limbs: Vec<Limb>,
+}
+
+/// Two joints that follow each other in the header, as if their columns were places.
+struct Limb {
+    joints: [usize; 2],
+    columns: [[usize; 3]; 2],
+    /// The first joint's place in the first row, and the way from there to the second.
+    first: Option<(DVec3, DVec3)>,
+    moved: f64,
+    stretched: f64,
+    turned: f64,
+}
+
+impl Places {
+    fn new(columns: &Columns) -> Self {
+        let mut triples: Vec<[Option<usize>; 3]> = vec![[None; 3]; columns.joints.len()];
+        for (column, role) in columns.roles.iter().enumerate() {
+            if let Role::Angle(joint, axis) = role {
+                triples[*joint][axis.index()] = Some(column);
             }
         }
+        let whole = triples.iter().enumerate();
+        let points: Vec<(usize, [usize; 3])> =
+            whole.filter_map(|(joint, triple)| Some((joint, [triple[0]?, triple[1]?, triple[2]?]))).collect();
+        let limbs = points.windows(2).map(|pair| Limb {
+            joints: [pair[0].0, pair[1].0],
+            columns: [pair[0].1, pair[1].1],
+            first: None,
+            moved: 0.0,
+            stretched: 0.0,
+            turned: 0.0,
+        });
+        Self { limbs: limbs.collect() }
     }
-    match stiff {
-        Some((joint, next, length)) if stiff_count >= 2 && stiff_count * 3 >= moving_count => {
-            let found = format!(
-                "places: {} and {} stay {length:.4} apart while they move",
-                columns.joints[joint], columns.joints[next]
-            );
-            Err(CsvError::unexpected(line, "turns in columns NAME.x NAME.y NAME.z", found))
+
+    fn add(&mut self, row: &[f64]) {
+        for limb in &mut self.limbs {
+            let [from, to] = limb.columns.map(|own| DVec3::from_array(own.map(|column| row[column])));
+            let (start, way) = *limb.first.get_or_insert((from, to - from));
+            limb.moved = limb.moved.max(from.distance(start));
+            limb.stretched = limb.stretched.max((from.distance(to) - way.length()).abs());
+            limb.turned = limb.turned.max(((to - from) - way).length());
         }
-        _ => Ok(()),
+    }
+
+    /// The complaint where the columns hold places.
+    fn refuse(&self, names: &[String], line: u32) -> Result<(), CsvError> {
+        let length = |limb: &Limb| limb.first.map_or(0.0, |(_, way)| way.length());
+        let moves = |limb: &&Limb| {
+            let length = length(limb);
+            length > 0.0 && limb.moved > 0.01 * length && limb.turned > 0.01 * length
+        };
+        let moving: Vec<&Limb> = self.limbs.iter().filter(moves).collect();
+        let mut stiff = moving.iter().filter(|limb| limb.stretched < 1e-3 * length(limb));
+        let Some(first) = stiff.next() else { return Ok(()) };
+        let n_stiff = 1 + stiff.count();
+        if n_stiff < 2 || n_stiff * 3 < moving.len() {
+            return Ok(());
+        }
+        let found = format!(
+            "places: {} and {} stay {:.4} apart while they move",
+            names[first.joints[0]],
+            names[first.joints[1]],
+            length(first)
+        );
+        Err(CsvError::unexpected(line, "turns in columns NAME.x NAME.y NAME.z", found))
     }
 }

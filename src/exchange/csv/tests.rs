@@ -189,6 +189,93 @@ fn missing_cells_are_told_and_can_be_filled() {
     assert_eq!(String::from_utf8(written).unwrap(), SMALL);
 }
 
+/// A sensor that logs some moments twice, as it was and with other numbers.
+const REPEATED: &str = "time,s.qw,s.qx,s.qy,s.qz,volts\n\
+    0,1,0,0,0,3.3\n\
+    0.01,0.8,0.6,0,0,3.2\n\
+    0.01,0.8,0.6,0,0,3.1\n\
+    0.02,0.6,0,0.8,0,3.0\n\
+    0.02,0.6,0,0,0.8,2.9\n\
+    0.02,0.0,0,0,1.0,2.8\n\
+    0.03,1,0,0,0,2.7\n";
+
+#[test]
+fn of_rows_at_one_time_the_last_counts_and_the_others_stay() {
+    let (document, clip, notes) = opened(REPEATED);
+    assert_eq!(
+        notes[1..],
+        [
+            "line 4: expected rising times, found 3 rows at the time of the row before: of each time the last row is used, the others are left as they are"
+        ]
+    );
+    assert_eq!(clip.grid.times, crate::clip::Times::Listed([0.0, 0.01, 0.02, 0.03].into()));
+    assert_eq!(clip.rotation(0).unwrap().keys[2], Rotor::from_xyzw([0.0, 0.0, 1.0, 0.0]));
+    assert_eq!(write(&document, &clip, &clip).0, REPEATED.as_bytes());
+    // What said the same as the row that is used changes along with it; what said something else stays.
+    let edit = [(1, Rotor::from_xyzw([0.0, 0.0, 0.6, 0.8])), (2, Rotor::from_xyzw([0.0, 0.28, 0.0, 0.96]))];
+    let changed = clip.with_rotation(0, clip.rotation(0).unwrap().with_keys(&edit));
+    let (written, notes) = write(&document, &clip, &changed);
+    assert_eq!(notes, []);
+    let expected = REPEATED
+        .replace("0.01,0.8,0.6,0,0,", "0.01,0.8,0,0,0.6,")
+        .replace("0.02,0.0,0,0,1.0,2.8", "0.02,0.96,0,0.28,0,2.8");
+    assert_eq!(String::from_utf8(written.clone()).unwrap(), expected);
+    assert_eq!(opened(&written).1.rotation(0).unwrap().keys, changed.rotation(0).unwrap().keys);
+    // Cut, the rows that are not used are gone, and the others keep their text.
+    let part = crate::clip::cut(&clip, 0.01, 0.03);
+    let (written, _) = write(&document, &clip, &part);
+    let rows = "0,0.8,0.6,0,0,3.1\n0.01,0.0,0,0,1.0,2.8\n";
+    let text = String::from_utf8(written).unwrap();
+    assert!(text.contains(rows), "{text}");
+    // All at one time are one row.
+    let (_, clip, _) = opened("time,a.qx,a.qy,a.qz,a.qw\n5,0,0,0,1\n5,1,0,0,0\n5,0,1,0,0\n");
+    assert_eq!((clip.grid.count(), clip.rotation(0).unwrap().keys.len()), (1, 1));
+}
+
+#[test]
+fn utf_16_reads_alike_and_is_written_back_in_its_own_order() {
+    let encoded = |text: &str, is_big: bool| -> Vec<u8> {
+        let units = format!("\u{feff}{text}").encode_utf16().collect::<Vec<u16>>();
+        units
+            .into_iter()
+            .flat_map(|unit| if is_big { unit.to_be_bytes() } else { unit.to_le_bytes() })
+            .collect()
+    };
+    // A name that UTF-8 has two bytes for.
+    let text = SMALL.replace("hip.", "Hüfte.").replace('\n', "\r\n");
+    let (_, plain, _) = opened(&text);
+    for is_big in [false, true] {
+        let bytes = encoded(&text, is_big);
+        let (document, clip, notes) = opened(&bytes);
+        assert_eq!(notes, ["line 1: expected UTF-8, found UTF-16: read so, and kept when writing"]);
+        assert_eq!(clip, plain);
+        assert_eq!((document.bytes(), &write(&document, &clip, &clip).0), (&bytes[..], &bytes));
+        let track = clip.rotation(1).unwrap().with_angles(&[(1, [11.0, 21.5, 31.0])]);
+        let (written, _) = write(&document, &clip, &clip.with_rotation(1, track));
+        assert_eq!(written, encoded(&text.replace("11,21,31", "11,21.5,31"), is_big));
+    }
+    let bones = encoded("joint,parent,offset.x,offset.y,offset.z\nHüfte,,0,1,0\n", false);
+    assert_eq!(hierarchy(&bones).unwrap()[0].name, "Hüfte");
+    let mut odd = encoded(&text, false);
+    odd.pop();
+    let error = read(&odd[..], "odd", &CsvOptions::default()).unwrap_err().to_string();
+    assert_eq!(
+        error,
+        "line 4: expected UTF-16 to the end, as the file's first two bytes say, found a single byte at the end of the file"
+    );
+}
+
+#[test]
+fn a_clock_of_microseconds_keeps_its_last_digit() {
+    let text = "timestamp_us,qw,qx,qy,qz\n1700000000000001,1,0,0,0\n1700000000000002,1,0,0,0\n1700000000000004,1,0,0,0\n";
+    let (document, clip, _) = opened(text);
+    let times: Vec<f64> = clip.grid.times.iter().collect();
+    assert_eq!(times, [0.0, 1e-6, 3e-6]);
+    let (written, _) = write(&document, &clip, &crate::clip::cut(&clip, 1e-6, 3e-6));
+    let text = String::from_utf8(written).unwrap();
+    assert!(text.ends_with("1700000000000001,1,0,0,0\n1700000000000003,1,0,0,0\n"), "{text}");
+}
+
 #[test]
 fn clock_times_count_from_the_first_row() {
     let text = "time,a.qx,a.qy,a.qz,a.qw\n1700000000.5,0,0,0,1\n1700000000.75,0,0,0,1\n";
@@ -316,8 +403,11 @@ fn broken_files_are_refused_with_line_column_expected_and_found() {
         ),
         (with("31,0,45,0", "31,0,45,0,7"), "line 3: expected 14 cells as in the header, found 15"),
         (with("0.25,1.5", "0.25,1,5"), "line 3: expected 14 cells as in the header, found 15"),
-        (with("0.25,", "0,"), "line 3, column time: expected a time after 0, found `0`"),
-        (with("\n1,", "\n-1,"), "line 4, column time: expected a time after 0.25, found `-1`"),
+        (with("\n1,", "\n-1,"), "line 4, column time: expected a time of 0.25 or later, found `-1`"),
+        (
+            with("hip.qy", "hip.QX"),
+            "line 1, column hip.QX: expected each part of a joint once, found `hip.QX`",
+        ),
         (with("0.25,", "nan,"), "line 3, column time: expected a finite time, found `nan`"),
         (with("0.25,", ","), "line 3, column time: expected a finite time, found an empty cell"),
         (with("0.25,", "inf,"), "line 3, column time: expected a finite time, found `inf`"),

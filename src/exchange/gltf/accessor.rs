@@ -6,9 +6,10 @@ use super::buffers::Buffers;
 use super::error::GltfError;
 use super::json::At;
 
-/// Numbers that a document may ask for beyond one for each of its bytes: overlapping accessors and sparse ones over
-/// zeros can ask for any number, honest files for none of these.
-const SPARE_NUMBERS: usize = 2 << 20;
+/// Bytes of memory that the numbers of a document may take for each byte of its own, and beyond. Overlapping accessors and
+/// sparse ones over zeros can ask for any amount; honest floats take twice theirs.
+const MOST_TIMES: usize = 6;
+const SPARE_BYTES: usize = 16 << 20;
 
 /// How one number is stored.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -100,19 +101,37 @@ pub(super) struct Decoded {
     pub all_zero: bool,
 }
 
-/// Reads accessors, and keeps count of what it hands out.
+/// Rotations of an accessor as the small whole numbers that they are stored as.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Whole {
+    /// Element after element.
+    pub numbers: Vec<i16>,
+    /// The number that stands for 1.
+    pub one: i16,
+    /// How they were stored.
+    pub component: Component,
+    /// As in [`Decoded`].
+    pub all_zero: bool,
+}
+
+/// Reads accessors, and keeps count of the memory that it hands out.
 pub(super) struct Accessors<'a> {
     root: At<'a>,
     /// Where the bytes are.
     pub buffers: Buffers<'a>,
     file_bytes: usize,
-    handed_out: usize,
+    handed_out_bytes: usize,
 }
 
 impl<'a> Accessors<'a> {
     /// Over the buffers of a file of `file_bytes` bytes.
     pub(super) fn new(root: At<'a>, buffers: Buffers<'a>, file_bytes: usize) -> Self {
-        Self { root, buffers, file_bytes, handed_out: 0 }
+        Self { root, buffers, file_bytes, handed_out_bytes: 0 }
+    }
+
+    /// Whether the document is so large that what is made of its smallest numbers counts.
+    pub(super) fn are_large(&self) -> bool {
+        self.file_bytes.saturating_add(self.buffers.opened_bytes) > SPARE_BYTES / 2
     }
 
     /// How many elements an accessor says it has.
@@ -124,34 +143,46 @@ impl<'a> Accessors<'a> {
         }
     }
 
-    /// All numbers of an accessor, normalised where they are integers.
-    pub(super) fn decode(&mut self, index: usize, wanted: Wanted) -> Result<Decoded, GltfError> {
+    /// All numbers of an accessor, normalised where they are integers. Each is counted as taking `number_bytes` in the end.
+    pub(super) fn decode(
+        &mut self,
+        index: usize,
+        wanted: Wanted,
+        number_bytes: usize,
+    ) -> Result<Decoded, GltfError> {
         let accessor = self.root.element("accessors", index)?;
-        let kind = accessor.text("type")?.unwrap_or_default();
-        if kind != wanted.kind {
-            let found = format!("`{kind}`");
-            return Err(GltfError::unlike(accessor.path_of("type"), format!("`{}`", wanted.kind), found));
+        let component = checked_component(&accessor, wanted)?;
+        let mut numbers = self.numbers(&accessor, index, wanted, number_bytes, |stored| stored)?;
+        for number in &mut numbers {
+            *number = component.normalised(*number);
         }
-        let component = component_of(&accessor)?;
-        match component {
-            Component::F32 => {}
-            Component::U32 => {
-                return Err(GltfError::unlike(
-                    accessor.path_of("componentType"),
-                    "5120 to 5123 or 5126",
-                    "5125",
-                ));
-            }
-            _ if !wanted.integers => {
-                let found = accessor.whole("componentType")?.unwrap_or_default().to_string();
-                return Err(GltfError::unlike(accessor.path_of("componentType"), "5126 (float)", found));
-            }
-            _ if !accessor.is_set("normalized") => {
-                let expected = "`normalized: true` beside an integer componentType";
-                return Err(GltfError::unlike(accessor.path_of("normalized"), expected, "none"));
-            }
-            _ => {}
-        }
+        Ok(Decoded { numbers, component, all_zero: is_all_zero(&accessor) })
+    }
+
+    /// The numbers of an accessor of small integers as they are stored; `None` where it has others.
+    pub(super) fn decode_whole(&mut self, index: usize, wanted: Wanted) -> Result<Option<Whole>, GltfError> {
+        let accessor = self.root.element("accessors", index)?;
+        let component = checked_component(&accessor, wanted)?;
+        let one = match component {
+            Component::I8 => 127,
+            Component::U8 => 255,
+            Component::I16 => 32_767,
+            Component::U16 | Component::U32 | Component::F32 => return Ok(None),
+        };
+        let numbers = self.numbers(&accessor, index, wanted, size_of::<i16>(), |stored| stored as i16)?;
+        Ok(Some(Whole { numbers, one, component, all_zero: is_all_zero(&accessor) }))
+    }
+
+    /// All numbers of an accessor as they are stored, sparse ones put in.
+    fn numbers<T: Copy + Default>(
+        &mut self,
+        accessor: &At<'_>,
+        index: usize,
+        wanted: Wanted,
+        number_bytes: usize,
+        of: impl Fn(f64) -> T,
+    ) -> Result<Vec<T>, GltfError> {
+        let component = component_of(accessor)?;
         let count = self.count(index)?;
         let total = count.saturating_mul(wanted.components);
         let view = accessor.index("bufferView", "bufferViews", &self.root)?;
@@ -161,46 +192,43 @@ impl<'a> Accessors<'a> {
             // Whether the bytes hold them is looked at before anything is set aside for the numbers.
             let (bytes, stride) = self.buffers.view(view)?;
             shape.elements(bytes, stride, &accessor.path, view)?;
-            self.spend(total, &accessor)?;
+            self.spend(total.saturating_mul(number_bytes), accessor)?;
             let (bytes, stride) = self.buffers.view(view)?;
-            shape.read(shape.elements(bytes, stride, &accessor.path, view)?)
+            shape.read(shape.elements(bytes, stride, &accessor.path, view)?, &of)
         } else {
-            self.spend(total, &accessor)?;
-            vec![0.0; total]
+            self.spend(total.saturating_mul(number_bytes), accessor)?;
+            vec![T::default(); total]
         };
-        let sparse = accessor.get("sparse");
-        if let Some(sparse) = &sparse {
-            self.substitute(sparse, component, wanted.components, count, &mut numbers)?;
+        if let Some(sparse) = accessor.get("sparse") {
+            self.substitute(&sparse, component, wanted.components, count, &mut numbers, &of)?;
         }
-        for number in &mut numbers {
-            *number = component.normalised(*number);
-        }
-        Ok(Decoded { numbers, component, all_zero: view.is_none() && sparse.is_none() })
+        Ok(numbers)
     }
 
-    /// Counts numbers about to be handed out, and refuses a document that asks for far more of them than it has bytes.
-    fn spend(&mut self, numbers: usize, accessor: &At<'_>) -> Result<(), GltfError> {
-        self.handed_out = self.handed_out.saturating_add(numbers);
-        let bytes = self.file_bytes.saturating_add(self.buffers.opened_bytes);
-        let budget = bytes.saturating_add(SPARE_NUMBERS);
-        if self.handed_out <= budget {
+    /// Counts bytes about to be handed out, and refuses a document that asks for far more of them than it has itself.
+    fn spend(&mut self, bytes: usize, accessor: &At<'_>) -> Result<(), GltfError> {
+        self.handed_out_bytes = self.handed_out_bytes.saturating_add(bytes);
+        let own = self.file_bytes.saturating_add(self.buffers.opened_bytes);
+        let most = own.saturating_mul(MOST_TIMES).saturating_add(SPARE_BYTES);
+        if self.handed_out_bytes <= most {
             return Ok(());
         }
         Err(GltfError::unlike(
             accessor.path_of("count"),
-            format!("at most {budget} numbers in all animation of a document of {bytes} bytes"),
-            format!("{} up to here", self.handed_out),
+            format!("at most {} MB of numbers in all animation of a document of {own} bytes", most >> 20),
+            format!("{} MB up to here", self.handed_out_bytes >> 20),
         ))
     }
 
     /// Overwrites the elements that a sparse accessor lists (section 3.6.2.3).
-    fn substitute(
+    fn substitute<T: Copy>(
         &mut self,
         sparse: &At<'_>,
         component: Component,
         components: usize,
         count: usize,
-        numbers: &mut [f64],
+        numbers: &mut [T],
+        of: &impl Fn(f64) -> T,
     ) -> Result<(), GltfError> {
         let n_listed = sparse.needed_whole("count")?;
         if !(1..=count).contains(&n_listed) {
@@ -215,8 +243,8 @@ impl<'a> Accessors<'a> {
             let place = indices.path_of("componentType");
             return Err(GltfError::unlike(place, "5121, 5123 or 5125", found));
         }
-        let listed = self.tight(&indices, index_kind, 1, n_listed)?;
-        let replacements = self.tight(&values, component, components, n_listed)?;
+        let listed = self.tight(&indices, index_kind, 1, n_listed, &|stored| stored as u32)?;
+        let replacements = self.tight(&values, component, components, n_listed, of)?;
         let mut before = None;
         for (at, (index, replacement)) in listed.iter().zip(replacements.chunks_exact(components)).enumerate()
         {
@@ -235,18 +263,48 @@ impl<'a> Accessors<'a> {
     }
 
     /// Numbers without gaps, where the view alone says where they are.
-    fn tight(
+    fn tight<T>(
         &mut self,
         place: &At<'_>,
         component: Component,
         components: usize,
         count: usize,
-    ) -> Result<Vec<f64>, GltfError> {
+        of: &impl Fn(f64) -> T,
+    ) -> Result<Vec<T>, GltfError> {
         let view = place.needed_index("bufferView", "bufferViews", &self.root)?;
         let start = place.whole("byteOffset")?.unwrap_or(0);
         let shape = Shape { count, components, component, start };
         let (bytes, _) = self.buffers.view(view)?;
-        Ok(shape.read(shape.elements(bytes, None, &place.path, view)?))
+        Ok(shape.read(shape.elements(bytes, None, &place.path, view)?, of))
+    }
+}
+
+fn is_all_zero(accessor: &At<'_>) -> bool {
+    accessor.get("bufferView").is_none() && accessor.get("sparse").is_none()
+}
+
+/// The component type of an accessor, which has to hold what is wanted.
+fn checked_component(accessor: &At<'_>, wanted: Wanted) -> Result<Component, GltfError> {
+    let kind = accessor.text("type")?.unwrap_or_default();
+    if kind != wanted.kind {
+        let found = format!("`{kind}`");
+        return Err(GltfError::unlike(accessor.path_of("type"), format!("`{}`", wanted.kind), found));
+    }
+    let component = component_of(accessor)?;
+    match component {
+        Component::F32 => Ok(component),
+        Component::U32 => {
+            Err(GltfError::unlike(accessor.path_of("componentType"), "5120 to 5123 or 5126", "5125"))
+        }
+        _ if !wanted.integers => {
+            let found = accessor.whole("componentType")?.unwrap_or_default().to_string();
+            Err(GltfError::unlike(accessor.path_of("componentType"), "5126 (float)", found))
+        }
+        _ if !accessor.is_set("normalized") => {
+            let expected = "`normalized: true` beside an integer componentType";
+            Err(GltfError::unlike(accessor.path_of("normalized"), expected, "none"))
+        }
+        _ => Ok(component),
     }
 }
 
@@ -300,11 +358,11 @@ impl Shape {
     }
 
     /// The stored numbers of checked bytes.
-    fn read(self, (bytes, stride): (&[u8], usize)) -> Vec<f64> {
+    fn read<T>(self, (bytes, stride): (&[u8], usize), of: &impl Fn(f64) -> T) -> Vec<T> {
         let mut numbers = Vec::with_capacity(self.count.saturating_mul(self.components));
         for element in bytes.chunks(stride.max(1)) {
             let own = element.get(..self.element_size()).unwrap_or_default();
-            numbers.extend(own.chunks_exact(self.component.size()).map(|one| self.component.stored(one)));
+            numbers.extend(own.chunks_exact(self.component.size()).map(|one| of(self.component.stored(one))));
         }
         numbers
     }

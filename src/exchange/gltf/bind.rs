@@ -100,13 +100,14 @@ fn skins(
                 continue;
             }
         };
-        let matrices = read.entry(index).or_insert_with(|| match accessors.decode(index, wanted) {
-            Ok(decoded) => Some(Rc::new(decoded.numbers)),
-            Err(error) => {
-                notes.push(Note::new(error.place, format!("{}; the bind pose is not read", error.kind)));
-                None
-            }
-        });
+        let matrices =
+            read.entry(index).or_insert_with(|| match accessors.decode(index, wanted, size_of::<f64>()) {
+                Ok(decoded) => Some(Rc::new(decoded.numbers)),
+                Err(error) => {
+                    notes.push(Note::new(error.place, format!("{}; the bind pose is not read", error.kind)));
+                    None
+                }
+            });
         let Some(matrices) = matrices else { continue };
         let joints = skin.list("joints").unwrap_or_default();
         if matrices.len() < 16 * joints.len() {

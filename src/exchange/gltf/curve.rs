@@ -46,9 +46,13 @@ impl Curve {
         };
         let per_key = |key: usize| match (&track.tangents, interpolation) {
             (Some(tangents), Interpolation::CubicSpline) => {
-                vec![quaternion(tangents[key][0]), quaternion(track.keys[key]), quaternion(tangents[key][1])]
+                vec![
+                    quaternion(tangents[key][0]),
+                    quaternion(track.keys.rotor(key)),
+                    quaternion(tangents[key][1]),
+                ]
             }
-            _ => vec![quaternion(track.keys[key])],
+            _ => vec![quaternion(track.keys.rotor(key))],
         };
         Self { off_rad: followed.off_rad, ..Self::new(&track.times, "VEC4", interpolation, per_key) }
     }
@@ -63,9 +67,9 @@ impl Curve {
         };
         let per_key = |key: usize| match (&track.tangents, interpolation) {
             (Some(tangents), Interpolation::CubicSpline) => {
-                vec![vector(tangents[key][0]), vector(track.keys[key]), vector(tangents[key][1])]
+                vec![vector(tangents[key][0]), vector(track.keys.vector(key)), vector(tangents[key][1])]
             }
-            _ => vec![vector(track.keys[key])],
+            _ => vec![vector(track.keys.vector(key))],
         };
         Self::new(&track.times, "VEC3", interpolation, per_key)
     }

@@ -171,7 +171,7 @@ impl Straight {
 fn own_key(track: &RotationTrack, key: usize) -> Rotor {
     let sound = track.sound_key(key);
     let played = track.at(track.times.at(key));
-    if played == sound { track.keys[key] } else { played }
+    if played == sound { track.keys.rotor(key) } else { played }
 }
 
 /// A cubic's key, rounded to 32 bits as it is written.

@@ -28,14 +28,18 @@ pub(super) fn frame_rate(tracks: &[&[f64]], duration_secs: f64) -> f64 {
     rate.min(MAX_FRAMES / duration_secs.max(f64::MIN_POSITIVE))
 }
 
-/// The mean step of the longest track and how far off it may be, where that track is even. The ends alone are rounded, so both
+/// The mean step of the even track with the most keys, and how far off it may be. The ends alone are rounded, so both
 /// shrink with the number of keys: a step of 0.008333 s is not a 120th, since after thousands of keys it would be one key off.
+/// Longer tracks may have keys put between, where a joint turns far from frame to frame.
 fn refined(median: f64, blur: f64, tracks: &[&[f64]]) -> Option<(f64, f64)> {
-    let longest = tracks.iter().max_by_key(|times| times.len())?;
-    let [first, .., last] = longest else { return None };
-    let n_steps = (longest.len() - 1) as f64;
-    let mean = (last - first) / n_steps;
-    ((mean - median).abs() <= blur).then_some((mean, blur.min(ROUNDINGS * blur / n_steps)))
+    let even = tracks.iter().filter_map(|times| {
+        let [first, .., last] = times else { return None };
+        let n_steps = times.len() - 1;
+        let mean = (last - first) / n_steps as f64;
+        ((mean - median).abs() <= blur).then_some((n_steps, mean))
+    });
+    let (n_steps, mean) = even.max_by_key(|(n_steps, _)| *n_steps)?;
+    Some((mean, blur.min(ROUNDINGS * blur / n_steps as f64)))
 }
 
 fn usual(step: f64, blur: f64) -> Option<f64> {
@@ -57,6 +61,17 @@ mod tests {
         let times: Vec<f64> = (0..n_keys).map(|key| f64::from((key as f64 / rate) as f32)).collect();
         let found = frame_rate(&[&times], *times.last().unwrap());
         assert!((found - expected).abs() < 1e-9 * expected, "{rate}: expected {expected}, found {found}");
+    }
+
+    #[test]
+    fn keys_put_between_the_frames_of_some_joints_leave_the_rate_alone() {
+        let secs = |step: f64| f64::from((step * 0.008_333) as f32);
+        let frames: Vec<f64> = (0..885).map(|frame| secs(f64::from(frame))).collect();
+        let mut more = frames.clone();
+        more.extend([40.5, 41.5, 300.5].map(secs));
+        more.sort_by(f64::total_cmp);
+        let found = frame_rate(&[&more, &frames], frames[884]);
+        assert!((found * 0.008_333 - 1.0).abs() < 1e-6, "{found}");
     }
 
     #[test]

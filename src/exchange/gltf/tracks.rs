@@ -6,7 +6,9 @@ use std::sync::Arc;
 
 use glam::DVec3;
 
-use crate::clip::{PathKind, Paths, RotationTrack, Segments, Stored, Times, VectorPath, VectorTrack};
+use crate::clip::{
+    Keys as TrackKeys, PathKind, Paths, RotationTrack, Segments, Stored, Times, VectorPath, VectorTrack,
+};
 use crate::exchange::Note;
 use crate::rotor::Rotor;
 
@@ -99,7 +101,7 @@ impl<'a> Tracks<'a> {
             return Ok(Rc::clone(times));
         }
         let wanted = Wanted { kind: "SCALAR", components: 1, integers: false };
-        let numbers = self.accessors.decode(input, wanted)?.numbers;
+        let numbers = self.accessors.decode(input, wanted, 2 * size_of::<f64>())?.numbers;
         let times = Rc::new(rising(&numbers, &format!("accessors[{input}]"), notes)?);
         self.times.insert(input, Rc::clone(&times));
         Ok(times)
@@ -136,19 +138,45 @@ impl<'a> Tracks<'a> {
             Part::Rotation => Wanted { kind: "VEC4", components: 4, integers: true },
             Part::Translation | Part::Scale => Wanted { kind: "VEC3", components: 3, integers: true },
         };
-        let values = self.accessors.decode(output, wanted)?;
-        if values.all_zero {
-            let text = "expected values, found an accessor without any, which stands for zeros";
-            notes.push(Note::new(format!("accessors[{output}]"), text));
+        // Small integers that turn a joint stay what they are: as rotors they would take up to eight times the room.
+        let is_plain = per_key == 1 && times.kept.is_none();
+        if part == Part::Rotation
+            && is_plain
+            && let Some(whole) = self.accessors.decode_whole(output, wanted)?
+        {
+            tell_zeros(whole.all_zero, output, notes);
+            let keys = TrackKeys::of_whole(whole.numbers.as_chunks::<4>().0.into(), whole.one);
+            let track = plain_track(&times, keys, interpolation);
+            let is_lean = whole.one < i16::MAX && self.accessors.are_large();
+            let track = Track::Rotation(if is_lean { track.lean() } else { track });
+            let decoded = Decoded { track, component: whole.component, is_trimmed: false };
+            self.decoded.insert(recipe, decoded.clone());
+            return Ok(decoded);
         }
+        // Those of cubics are there twice while keys and tangents are put apart.
+        let number_bytes = if is_plain { size_of::<f64>() } else { 3 * size_of::<f64>() };
+        let values = self.accessors.decode(output, wanted, number_bytes)?;
+        tell_zeros(values.all_zero, output, notes);
         let keys = Keys { times: &times, per_key, components: wanted.components, numbers: &values.numbers };
         let track = match part {
+            Part::Rotation if is_plain => {
+                let quadruples = values.numbers.as_chunks::<4>().0;
+                let keys = quadruples.iter().map(|own| Rotor::from_xyzw(*own)).collect();
+                Track::Rotation(plain_track(&times, keys, interpolation))
+            }
             Part::Rotation => Track::Rotation(rotation_track(&keys, interpolation)),
             Part::Translation | Part::Scale => Track::Vector(vector_track(&keys, interpolation)),
         };
         let decoded = Decoded { track, component: values.component, is_trimmed: times.kept.is_some() };
         self.decoded.insert(recipe, decoded.clone());
         Ok(decoded)
+    }
+}
+
+fn tell_zeros(are_zeros: bool, output: usize, notes: &mut Vec<Note>) {
+    if are_zeros {
+        let text = "expected values, found an accessor without any, which stands for zeros";
+        notes.push(Note::new(format!("accessors[{output}]"), text));
     }
 }
 
@@ -216,6 +244,15 @@ impl Keys<'_> {
 
     fn times(&self) -> Times {
         Times::Listed(Arc::clone(&self.times.secs))
+    }
+}
+
+/// A track of keys without tangents.
+fn plain_track(times: &KeyTimes, keys: TrackKeys, interpolation: Interpolation) -> RotationTrack {
+    let path = if interpolation == Interpolation::Step { PathKind::Hold } else { PathKind::Slerp };
+    RotationTrack {
+        paths: Paths::Every(path),
+        ..RotationTrack::from_rotors(Times::Listed(Arc::clone(&times.secs)), keys)
     }
 }
 

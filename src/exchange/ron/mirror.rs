@@ -34,6 +34,9 @@ pub(super) struct Source {
     pub(super) columns: Option<String>,
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub(super) time_unit: Option<String>,
+    /// From the scene's own folder, as `path`.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) skeleton: Option<String>,
     /// `bind`, `defaults` or `first-frame`.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub(super) rest: Option<String>,
@@ -42,8 +45,8 @@ pub(super) struct Source {
 impl Source {
     /// The oldest version that knows it.
     pub(super) fn version(&self) -> u32 {
-        let is_plain = self.columns.is_none() && self.time_unit.is_none() && self.rest.is_none();
-        if is_plain { 1 } else { 2 }
+        let said = [&self.columns, &self.time_unit, &self.skeleton, &self.rest];
+        if said.iter().all(|own| own.is_none()) { 1 } else { 2 }
     }
 }
 

@@ -128,7 +128,7 @@ pub fn from_text(path: &Path, text: &str) -> Result<SceneFile, SceneError> {
     let folder = path.parent().unwrap_or(Path::new(""));
     let mut file = SceneFile { document: Document::default(), labels: Vec::new() };
     for (index, source) in scene.sources.into_iter().enumerate() {
-        let reading = reading_from(&source).map_err(|what| SceneError::Meaning {
+        let reading = reading_from(folder, &source).map_err(|what| SceneError::Meaning {
             path: path.to_owned(),
             place: format!("sources[{index}]"),
             what,
@@ -218,6 +218,7 @@ pub fn to_text(
         sha256: source.sha256.clone(),
         columns: source.reading.columns.clone(),
         time_unit: source.reading.time_unit.clone(),
+        skeleton: source.reading.skeleton.as_ref().map(|own| relative(folder, own)),
         rest: source.reading.rest.map(|rest| rest.name().to_owned()),
     });
     let sources: Vec<mirror::Source> = sources.collect();
@@ -275,7 +276,7 @@ pub fn to_text(
 }
 
 /// How a source is read, each part checked.
-fn reading_from(source: &mirror::Source) -> Result<Reading, String> {
+fn reading_from(folder: &Path, source: &mirror::Source) -> Result<Reading, String> {
     let checked = |name: &str, text: &Option<String>, check: &dyn Fn(&str) -> Result<(), String>| {
         let wrong = |error: String| format!("{name}: {error}");
         text.as_deref().map_or(Ok(()), check).map_err(wrong)?;
@@ -289,7 +290,8 @@ fn reading_from(source: &mirror::Source) -> Result<Reading, String> {
     })?;
     let rest = source.rest.as_deref().map(str::parse::<RestChoice>).transpose();
     let rest = rest.map_err(|error| format!("rest: {error}"))?;
-    Ok(Reading { columns, time_unit, rest })
+    let skeleton = source.skeleton.as_ref().map(|own| folder.join(own));
+    Ok(Reading { columns, time_unit, skeleton, rest })
 }
 
 /// `path` as seen from `folder`, with `/` between, so that a scene can move with its sources.
@@ -405,6 +407,7 @@ mod tests {
         document.sources[0].reading = Reading {
             columns: Some("time=t,w=a,x=b,y=c,z=d".to_owned()),
             time_unit: Some("ms".to_owned()),
+            skeleton: Some(folder.join("takes/figure.glb")),
             rest: Some(RestChoice::FirstFrame),
         };
         let path = folder.join("a.ron");
