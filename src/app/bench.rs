@@ -50,12 +50,34 @@ impl SourceState {
 pub struct Evaluated {
     /// The passes that were run.
     pub passes: Vec<Pass>,
-    /// The passes of other clips whose results they needed, by work.
-    pub behind: Vec<(usize, Vec<Pass>)>,
+    /// The other clips whose results they needed.
+    pub behind: Vec<WorkBehind>,
     /// What they gave.
     pub evaluation: Arc<Evaluation>,
     /// Their sum in a few numbers.
     pub changes: Changes,
+}
+
+/// A clip that another one's result hangs on: as its file was read, and what is done to it.
+#[derive(Clone, Debug)]
+pub struct WorkBehind {
+    /// Which work.
+    pub work: usize,
+    /// Its source clip, if its file is open. Another rest pose, or the file found again, makes another one.
+    pub source: Option<Arc<Clip>>,
+    /// Its passes.
+    pub passes: Vec<Pass>,
+}
+
+impl PartialEq for WorkBehind {
+    fn eq(&self, other: &Self) -> bool {
+        let same_source = match (&self.source, &other.source) {
+            (Some(own), Some(others)) => Arc::ptr_eq(own, others),
+            (None, None) => true,
+            _ => false,
+        };
+        same_source && self.work == other.work && self.passes == other.passes
+    }
 }
 
 /// What a search for snags hangs on, beside the clip.
@@ -172,14 +194,15 @@ impl Project {
         Library::new(Arc::clone(self.document()), sources).with_evaluators(evaluators)
     }
 
-    /// The passes of other clips that a work's result hangs on, by work.
-    pub fn passes_behind(&self, work: usize) -> Vec<(usize, Vec<Pass>)> {
+    /// The other clips that a work's result hangs on, by rising work.
+    pub fn works_behind(&self, work: usize) -> Vec<WorkBehind> {
         let document = self.document();
-        document
-            .leans_on(work)
-            .into_iter()
-            .map(|other| (other, document.works[other].passes.clone()))
-            .collect()
+        let behind = |work: usize| WorkBehind {
+            work,
+            source: self.source_clip(work).cloned(),
+            passes: document.works[work].passes.clone(),
+        };
+        document.leans_on(work).into_iter().map(behind).collect()
     }
 
     /// The result of a work as far as it is known: until passes have been run, what they gave before.

@@ -5,7 +5,7 @@ use std::sync::Arc;
 use crate::clip::Clip;
 use crate::scene::{BlendPass, Pass, PassId, PassStep};
 
-use super::bench::Bench;
+use super::bench::{Bench, WorkBehind};
 use super::view_models::BlendFacts;
 
 /// How the blend lane is set.
@@ -21,11 +21,13 @@ pub struct BlendHabits {
     pub soft: usize,
     /// The pass that a file is being chosen for.
     pub file_for: Option<PassId>,
+    /// Which of its clips that file is to be: 0 for the second, the next numbers for the further ones of a mean, in their order.
+    pub file_place: usize,
 }
 
 impl Default for BlendHabits {
     fn default() -> Self {
-        Self { shows_lane: true, shows_clips: true, shown: None, soft: 1, file_for: None }
+        Self { shows_lane: true, shows_clips: true, shown: None, soft: 1, file_for: None, file_place: 0 }
     }
 }
 
@@ -33,7 +35,7 @@ impl BlendHabits {
     /// For another clip: the habits stay.
     #[must_use]
     pub fn for_another_clip(self) -> Self {
-        Self { shown: None, file_for: None, ..self }
+        Self { shown: None, file_for: None, file_place: 0, ..self }
     }
 }
 
@@ -42,8 +44,8 @@ impl BlendHabits {
 pub struct BlendKey {
     /// The clip that the pass gets.
     pub first: Arc<Clip>,
-    /// The passes of other clips, by work.
-    pub behind: Vec<(usize, Vec<Pass>)>,
+    /// The other clips that are blended in, and those that they need.
+    pub behind: Vec<WorkBehind>,
     /// The pass.
     pub pass: BlendPass,
 }
@@ -91,7 +93,11 @@ impl Bench {
         let work = self.blend.as_ref()?;
         let facts = work.facts.as_ref().ok()?;
         let (id, pass) = self.shown_blend()?;
-        let is_of = work.key.pass.other == pass.other && Arc::ptr_eq(self.clip_before(id)?, &work.key.first);
+        let same_others = |own: &BlendPass, other: &BlendPass| {
+            let clips = |pass: &BlendPass| pass.form.more().iter().map(|&(clip, _)| clip).collect::<Vec<_>>();
+            own.other == other.other && clips(own) == clips(other)
+        };
+        let is_of = same_others(&work.key.pass, &pass) && Arc::ptr_eq(self.clip_before(id)?, &work.key.first);
         is_of.then_some(facts)
     }
 }

@@ -17,7 +17,7 @@ pub enum Reference {
     /// The layer's first frame.
     #[default]
     First,
-    /// The skeleton's rest pose.
+    /// The rest pose that the layer's turns are measured from ([`Skeleton::chosen_rest`](crate::skeleton::Skeleton::chosen_rest)).
     Rest,
     /// The layer's mean over time: geodesic for turns.
     Mean,
@@ -59,7 +59,7 @@ pub fn add(
         if share == 0.0 || !(turns || moves) {
             return a.joints[joint].clone();
         }
-        let rest = layer.skeleton.joints()[joint].rest;
+        let rest = layer.skeleton.chosen_rest(joint);
         let mut row = Row::default();
         // Where the layer is at its reference `a` keeps its numbers.
         let mut is_still = vec![true; times.len()];
@@ -110,7 +110,7 @@ pub fn add(
         let made_places = row.translations.is_some();
         let on_frames = first.rotation.as_ref().is_none_or(|track| track.times == a.grid.times);
         let kept = |frame: usize| (on_frames && is_still[frame]).then_some(frame);
-        let mut tracks = frames::tracks(first, &a.grid.times, row, &kept);
+        let mut tracks = frames::tracks(first, &a.grid.times, row, Some(&kept));
         if !turns {
             tracks.rotation.clone_from(&first.rotation);
         }

@@ -3,8 +3,10 @@
 use glam::DVec3;
 
 use crate::clip::Clip;
+use crate::rotor::Rotor;
 
-use super::ground::GroundMove;
+use super::frames;
+use super::ground::{GroundMove, tops};
 
 /// The joints whose places stand for a pose, with their weights, which sum to 1.
 #[derive(Clone, Debug, PartialEq)]
@@ -36,9 +38,15 @@ impl Landmarks {
         joints.truncate(MOST_LANDMARKS);
         joints.sort_by_key(|&(joint, _)| joint);
         let sum: f64 = joints.iter().map(|&(_, weight)| weight).sum();
-        let count = joints.len() as f64;
-        for (_, weight) in &mut joints {
-            *weight = if sum > 0.0 { *weight / sum } else { 1.0 / count };
+        if sum > 0.0 {
+            for (_, weight) in &mut joints {
+                *weight /= sum;
+            }
+        } else {
+            // Without any length there is a place and a turn of what carries the motion.
+            let tops = tops(clip);
+            let share = 1.0 / tops.len().max(1) as f64;
+            joints = tops.into_iter().map(|top| (top, share)).collect();
         }
         Self { joints }
     }
@@ -50,6 +58,10 @@ pub struct Cloud {
     weights: Vec<f64>,
     /// Places, landmark after landmark, frame after frame.
     points: Vec<DVec3>,
+    /// Turns in the scene, alike; none where only places are known.
+    turns: Vec<Rotor>,
+    /// Whether any joint of the clip is turned.
+    has_turns: bool,
     /// What each frame gives to every sum it takes part in.
     sums: Vec<Sums>,
     frames: usize,
@@ -69,16 +81,20 @@ impl Cloud {
         // Few enough at once to stay small.
         const ROWS: usize = 256;
         let mut points = Vec::with_capacity(times_secs.len() * landmarks.joints.len());
+        let mut turns = Vec::with_capacity(points.capacity());
         for part in times_secs.chunks(ROWS) {
             let worlds = clip.worlds_at(part);
             for time in 0..part.len() {
                 points.extend(landmarks.joints.iter().map(|&(joint, _)| worlds.position(joint, time)));
+                turns.extend(landmarks.joints.iter().map(|&(joint, _)| worlds.rotation(joint, time)));
             }
         }
-        Self::from_points(landmarks.joints.iter().map(|&(_, weight)| weight).collect(), points)
+        let has_turns = (0..clip.joints.len()).any(|joint| frames::says(clip, joint)[0]);
+        let weights = landmarks.joints.iter().map(|&(_, weight)| weight).collect();
+        Self { turns, has_turns, ..Self::from_points(weights, points) }
     }
 
-    /// A cloud from points, frame after frame, with a weight for each point of a frame.
+    /// A cloud from points, frame after frame, with a weight for each point of a frame. It knows of no turns.
     ///
     /// # Panics
     /// When the points are not whole frames.
@@ -93,7 +109,7 @@ impl Cloud {
                 square: sum.square + weight * (point.x * point.x + point.z * point.z),
             })
         });
-        Self { sums: sums.collect(), weights, points, frames }
+        Self { sums: sums.collect(), weights, points, turns: Vec::new(), has_turns: false, frames }
     }
 
     /// How many frames.
@@ -125,6 +141,17 @@ impl Cloud {
 
     /// As [`Cloud::fit`], over any pairs of frames.
     pub fn fit_pairs(&self, other: &Self, pairs: impl Iterator<Item = (usize, usize)>) -> (f64, GroundMove) {
+        self.moved_pairs(other, pairs, f64::atan2)
+    }
+
+    /// The distance over pairs of frames once `other` is turned as `turn` says, of how far places go across and along each other, and shifted to
+    /// fit best; and that move.
+    fn moved_pairs(
+        &self,
+        other: &Self,
+        pairs: impl Iterator<Item = (usize, usize)>,
+        turn: impl Fn(f64, f64) -> f64,
+    ) -> (f64, GroundMove) {
         let weight: f64 = self.weights.iter().sum();
         let (mut own, mut their) = (Sums::default(), Sums::default());
         let (mut total, mut along, mut across, mut heights) = (0.0, 0.0, 0.0, 0.0);
@@ -146,7 +173,7 @@ impl Cloud {
         }
         let along = along - (own.x * their.x + own.z * their.z) / total;
         let across = across - (own.x * their.z - their.x * own.z) / total;
-        let turn_rad = across.atan2(along);
+        let turn_rad = turn(across, along);
         let (sin, cos) = turn_rad.sin_cos();
         let place = GroundMove {
             turn_rad,
@@ -154,8 +181,45 @@ impl Cloud {
             z: (own.z + their.x * sin - their.z * cos) / total,
         };
         let spread = |sums: Sums| sums.square - (sums.x * sums.x + sums.z * sums.z) / total;
-        let ground = spread(own) + spread(their) - 2.0 * along.hypot(across);
+        let ground = spread(own) + spread(their) - 2.0 * (along * cos + across * sin);
         ((ground.max(0.0) + heights) / total, place)
+    }
+}
+
+impl Cloud {
+    /// The turn about the vertical that makes the poses of `other` face as those of `self` do, over pairs of frames: the one that brings
+    /// the landmarks' own turns nearest together, by the weighted sum of the squared differences of their matrices.
+    ///
+    /// The fit of places can't tell this where legs are out of step: with the left foot in front in one and the right foot in the other, places
+    /// are nearest with one body turned round. It is taken only where nothing in the clips turns.
+    pub fn facing(&self, other: &Self, pairs: impl Iterator<Item = (usize, usize)> + Clone) -> f64 {
+        let knows = self.turns.len() == self.points.len() && other.turns.len() == other.points.len();
+        if !knows || !(self.has_turns || other.has_turns) {
+            return self.fit_pairs(other, pairs).1.turn_rad;
+        }
+        let width = self.weights.len();
+        let (mut along, mut across) = (0.0, 0.0);
+        for (a, b) in pairs {
+            let (own, their) = (&self.turns[a * width..][..width], &other.turns[b * width..][..width]);
+            for ((own, their), weight) in own.iter().zip(their).zip(&self.weights) {
+                let between = *own * their.reverse();
+                // The matrix of a turn about +Y by θ has cos θ twice and ±sin θ once each: those of what is between sum to this.
+                along += weight * (between.s * between.s - between.zx * between.zx);
+                across -= weight * 2.0 * between.s * between.zx;
+            }
+        }
+        across.atan2(along)
+    }
+
+    /// How the poses of `other` are set down on those of `self`, over pairs of frames: turned to face alike ([`Cloud::facing`]) and moved so that
+    /// places are nearest; and the weighted mean of squared distances that are left.
+    pub fn set_down(
+        &self,
+        other: &Self,
+        pairs: impl Iterator<Item = (usize, usize)> + Clone,
+    ) -> (f64, GroundMove) {
+        let turn_rad = self.facing(other, pairs.clone());
+        self.moved_pairs(other, pairs, |_, _| turn_rad)
     }
 }
 

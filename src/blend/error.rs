@@ -29,6 +29,22 @@ pub enum BlendError {
         /// What was asked for.
         found_secs: f64,
     },
+    /// A clip of a single pose has no time to overlap in.
+    #[error("expected two clips with at least two frames each to join, found one frame in `{0}`")]
+    OneFrame(String),
+    /// The overlap is not too long, but lies beyond an end.
+    #[error(
+        "expected an overlap of {overlap_secs} s within both clips, found it to begin at {} s of {:.3} s of the first and at {} s of {:.3} s of \
+         the second", .begins_secs[0], .lengths_secs[0], .begins_secs[1], .lengths_secs[1]
+    )]
+    Place {
+        /// How long it is.
+        overlap_secs: f64,
+        /// Where it begins in each clip.
+        begins_secs: [f64; 2],
+        /// How long each clip is.
+        lengths_secs: [f64; 2],
+    },
     /// No part of the clip is so long.
     #[error(
         "expected a loop above 0 and at most {most_secs:.3} s long, the clip's length, found {found_secs} s"
@@ -54,8 +70,13 @@ pub enum BlendError {
         found: String,
     },
     /// A joint that is not there.
-    #[error("expected a joint of the clip, found `{0}`")]
-    NoSuchJoint(String),
+    #[error("expected a joint of the first clip, such as {there}, found `{found}`")]
+    NoSuchJoint {
+        /// What was asked for.
+        found: String,
+        /// Labels of joints that are there, those that are written nearly so where there are such.
+        there: String,
+    },
     /// No way through the grid keeps the bounds on pace.
     #[error(
         "expected clips whose paces differ at most {most}-fold, found {rows} and {columns} frames to align; \

@@ -9,6 +9,8 @@ use super::{BlendError, JoinPlace, Mask, join};
 const HELD: f64 = 0.55;
 /// Where one clip weighs less than this the result is the other one and is left alone.
 const LEAST_WEIGHT: f64 = 1e-3;
+/// Times nearer than this are the same, in seconds.
+const SAME_SECS: f64 = 1e-9;
 /// A shorter contact is none, in frames.
 const LEAST_FRAMES: usize = 3;
 
@@ -24,64 +26,87 @@ pub fn join_on_feet(a: &Clip, b: &Clip, place: JoinPlace, mask: &Mask) -> Result
     let second_secs: Vec<f64> =
         first_secs.iter().map(|secs| secs - place.first_secs + place.second_secs).collect();
     let weights: Vec<f64> = first_secs.iter().map(|&secs| place.weight(secs)).collect();
-    let origins = Origins { first_secs: &first_secs, second_secs: &second_secs, weights: &weights };
-    Ok(held(&joined, a, b, &origins, mask).map_or(joined, |(held, _)| held))
+    Ok(held_of_two(joined, [a, b], [&first_secs, &second_secs], &weights, mask))
 }
 
-/// Where a result takes each of its frames from.
-pub(super) struct Origins<'a> {
-    /// Time in the first clip of each frame, seconds.
-    pub(super) first_secs: &'a [f64],
-    /// Time in the second clip.
-    pub(super) second_secs: &'a [f64],
-    /// Weight of the second clip.
+/// Where a result takes its frames from: one of its clips.
+pub(super) struct Origin<'a> {
+    /// The clip.
+    pub(super) clip: &'a Clip,
+    /// Its time at each frame, seconds.
+    pub(super) secs: &'a [f64],
+    /// Its weight at each frame; those of all clips sum to 1.
     pub(super) weights: &'a [f64],
 }
 
-/// `blended` with its feet held where they stand in frames that are mixed of both clips: where one of them, or both, has them
-/// planted and weighs enough. `None` where no foot stands there.
-pub(super) fn held(
-    blended: &Clip,
-    a: &Clip,
-    b: &Clip,
-    origins: &Origins<'_>,
+/// As [`held`], of two clips by the weights of the second.
+pub(super) fn held_of_two(
+    blended: Clip,
+    [a, b]: [&Clip; 2],
+    [first_secs, second_secs]: [&[f64]; 2],
+    weights: &[f64],
     mask: &Mask,
-) -> Option<(Clip, PlantReport)> {
-    let is_mixed = |weight: f64| (LEAST_WEIGHT..=1.0 - LEAST_WEIGHT).contains(&weight);
-    if !origins.weights.iter().any(|&weight| is_mixed(weight)) {
+) -> Clip {
+    let left: Vec<f64> = weights.iter().map(|weight| 1.0 - weight).collect();
+    let origins = [
+        Origin { clip: a, secs: first_secs, weights: &left },
+        Origin { clip: b, secs: second_secs, weights },
+    ];
+    held(&blended, &origins, mask).map_or(blended, |(held, _)| held)
+}
+
+/// `blended` with its feet held where they stand in frames that are mixed of several clips: where those that have them planted weigh
+/// enough together. `None` where no foot stands there. The first clip's share is what the mask leaves of the others'.
+pub(super) fn held(blended: &Clip, origins: &[Origin<'_>], mask: &Mask) -> Option<(Clip, PlantReport)> {
+    let (first, others) = origins.split_first()?;
+    let count = first.weights.len();
+    // The weight of the others is counted, so that a mask can take from it.
+    let weights = |frame: usize, factor: f64| {
+        let given = others.iter().map(move |origin| origin.weights[frame] * factor);
+        let own = 1.0 - given.clone().sum::<f64>();
+        std::iter::once(own).chain(given)
+    };
+    let is_mixed =
+        |frame: usize, factor: f64| weights(frame, factor).all(|weight| weight <= 1.0 - LEAST_WEIGHT);
+    // A clip with itself is itself, with whatever its feet do.
+    let is_same = |other: &Origin<'_>| {
+        let is_near = |(own, their): (&f64, &f64)| (own - their).abs() < SAME_SECS;
+        first.secs.iter().zip(other.secs).all(is_near)
+            && (0..first.clip.joints.len()).all(|joint| first.clip.same_joint(other.clip, joint))
+    };
+    if !(0..count).any(|frame| is_mixed(frame, 1.0)) || others.iter().all(is_same) {
         return None;
     }
     let contact = ContactOptions::default();
-    let feet = standing_feet(a, contact.up);
+    let feet = standing_feet(first.clip, contact.up);
     if feet.is_empty() {
         return None;
     }
     let options = PlantOptions::default();
     let reach = (options.fade_secs * blended.grid.rate).ceil() as usize;
-    let (own, other) = (planted(a, &feet, &contact), planted(b, &feet, &contact));
+    let rows: Vec<Planted> = origins.iter().map(|origin| planted(origin.clip, &feet, &contact)).collect();
     let mut spans = Vec::new();
     for (foot, limb) in feet.iter().enumerate() {
-        let factor = reaching(a, limb, mask);
-        let weight = |frame: usize| origins.weights[frame] * factor;
+        let factor = reaching(first.clip, limb, mask);
         for &part in limb.parts() {
             let is_down = |frame: usize| {
-                let on = |clip: &Clip, rows: &Planted, secs: f64| {
-                    f64::from(u8::from(rows.of(foot, part)[clip.grid.frame(secs)]))
-                };
-                let first = on(a, &own, origins.first_secs[frame]);
-                let second = on(b, &other, origins.second_secs[frame]);
-                (1.0 - weight(frame)) * first + weight(frame) * second > HELD
+                let down =
+                    origins.iter().zip(&rows).zip(weights(frame, factor)).map(|((origin, rows), weight)| {
+                        let is_on = rows.of(foot, part)[origin.clip.grid.frame(origin.secs[frame])];
+                        if is_on { weight } else { 0.0 }
+                    });
+                down.sum::<f64>() > HELD
             };
             let mut stands: Vec<PlantedSpan> = Vec::new();
             let mut frame = 0;
-            while frame < origins.weights.len() {
-                let run = (frame..origins.weights.len()).take_while(|&frame| is_down(frame)).count();
+            while frame < count {
+                let run = (frame..count).take_while(|&frame| is_down(frame)).count();
                 if run >= LEAST_FRAMES {
                     stands.push(PlantedSpan { foot, part, first_frame: frame, last_frame: frame + run - 1 });
                 }
                 frame += run + 1;
             }
-            let is_touched = |span: &&PlantedSpan| span.frames().any(|frame| is_mixed(weight(frame)));
+            let is_touched = |span: &&PlantedSpan| span.frames().any(|frame| is_mixed(frame, factor));
             let touched: Vec<PlantedSpan> = stands.iter().filter(is_touched).copied().collect();
             // What fades out beside a stand must not move the stand next to it.
             let is_beside = |span: &&PlantedSpan| {

@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use crate::clip::{Clip, VectorTrack};
-use crate::skeleton::{JointKind, Skeleton};
+use crate::skeleton::{JointKind, RestChoice, Skeleton, Transform};
 
 use super::BlendError;
 
@@ -11,15 +11,19 @@ use super::BlendError;
 const SAME_TURN_RAD: f64 = 1.8e-4;
 /// Limbs may point so far apart at rest, in radians (25°): bodies of one make differ so in their hips and shoulders.
 const SAME_DIRECTION_RAD: f64 = 0.436;
-/// Lengths of one unit: their common factor lies within. Beyond it places are scaled.
-const SAME_UNIT: std::ops::Range<f64> = 0.75..1.34;
+/// Two bodies of one make: the larger is at most so many times the smaller.
+const MOST_LARGER: f64 = 1.34;
+/// Limbs of one body in another unit differ by one factor, but for so much: files round them.
+const ONE_FACTOR: f64 = 2e-3;
+/// Usual units in metres: metre, centimetre, millimetre, inch, and an inch divided by 0.45, in which captures are handed on.
+const UNITS: [f64; 5] = [1.0, 0.01, 0.001, 0.0254, 0.0254 / 0.45];
 /// Shorter offsets than this share of the body's size say nothing of a direction.
 const SHORT: f64 = 0.04;
 
-/// `clip` on `skeleton`: its joints brought into the skeleton's order by their labels, its lengths to the skeleton's by one
-/// factor. Turns are taken as they are, so limbs may be longer or shorter (two people captured on one skeleton) but have to
-/// point alike at rest. The very clip when it already has this skeleton. Joints of the clip alone are left out; ends of limbs
-/// that it lacks keep their rest.
+/// `clip` on `skeleton`: its joints brought into the skeleton's order by their labels, its lengths into the skeleton's unit.
+/// Turns are taken as they are, so limbs may be longer or shorter (two people captured on one skeleton) but have to
+/// point alike at rest; how much larger one body is changes no place. The very clip when it already has this skeleton. Joints of the
+/// clip alone are left out; ends of limbs that it lacks keep their rest. The pose that the clip's turns are measured from stays its own.
 ///
 /// # Errors
 /// When a joint has no partner of its name under the same parent, or rests turned another way: the body is another one.
@@ -47,9 +51,7 @@ pub fn fit(clip: &Arc<Clip>, skeleton: &Arc<Skeleton>) -> Result<Arc<Clip>, Blen
     if let Some(&joint) = inner_lost {
         return Err(other(joint));
     }
-    let scale = common_scale(skeleton, theirs, &partner);
-    // Two people differ a little; another unit differs much.
-    let scale = if SAME_UNIT.contains(&scale) { 1.0 } else { scale };
+    let scale = unit_factor(&ratios(skeleton, theirs, &partner));
     let size = size(skeleton);
     for &joint in &listed {
         let Some(their) = partner[joint] else { continue };
@@ -84,7 +86,28 @@ pub fn fit(clip: &Arc<Clip>, skeleton: &Arc<Skeleton>) -> Result<Arc<Clip>, Blen
         tracks.translation = tracks.translation.as_ref().map(scaled);
         Arc::new(tracks)
     });
-    Ok(Arc::new(Clip { joints: joints.collect(), skeleton: skeleton.clone(), ..(**clip).clone() }))
+    let skeleton = measured_as(skeleton, theirs, &partner, scale);
+    Ok(Arc::new(Clip { joints: joints.collect(), skeleton, ..(**clip).clone() }))
+}
+
+/// `skeleton`, measured from the pose that the turns of `theirs` are measured from.
+fn measured_as(
+    skeleton: &Arc<Skeleton>,
+    theirs: &Skeleton,
+    partner: &[Option<usize>],
+    scale: f64,
+) -> Arc<Skeleton> {
+    if [skeleton, theirs].iter().all(|skeleton| skeleton.rest_choice() == RestChoice::Defaults) {
+        return skeleton.clone();
+    }
+    let pose = partner.iter().zip(skeleton.joints()).map(|(their, own)| match their {
+        Some(their) => {
+            let rest = theirs.chosen_rest(*their);
+            Transform { translation: rest.translation * scale, ..rest }
+        }
+        None => own.rest,
+    });
+    Arc::new(skeleton.with_rest_by_rule(theirs.rest_choice(), pose.collect()))
 }
 
 /// The joint of `theirs` with the same label and a parent of the same label.
@@ -102,8 +125,8 @@ fn partner(skeleton: &Skeleton, joint: usize, theirs: &Skeleton) -> Option<usize
     same.then_some(their)
 }
 
-/// The factor that takes their lengths to ours: the median over all limbs.
-fn common_scale(skeleton: &Skeleton, theirs: &Skeleton, partner: &[Option<usize>]) -> f64 {
+/// How many times as long each limb is here as there, in rising order.
+fn ratios(skeleton: &Skeleton, theirs: &Skeleton, partner: &[Option<usize>]) -> Vec<f64> {
     let mut ratios: Vec<f64> = skeleton
         .listed()
         .filter(|&joint| skeleton.parent_joint(joint).is_some())
@@ -114,7 +137,26 @@ fn common_scale(skeleton: &Skeleton, theirs: &Skeleton, partner: &[Option<usize>
         })
         .collect();
     ratios.sort_by(f64::total_cmp);
-    ratios.get(ratios.len() / 2).copied().unwrap_or(1.0)
+    ratios
+}
+
+/// The factor that takes their unit to ours, from how limbs compare. Where all limbs compare alike and not nearly as 1 to 1, it is one body in
+/// another unit, whichever that is. Else there are two bodies, and the factor is that of two usual units which leaves them most alike in
+/// size; without such a pair of units it is what the limbs say.
+fn unit_factor(ratios: &[f64]) -> f64 {
+    let Some(&median) = ratios.get(ratios.len() / 2) else { return 1.0 };
+    // The middle nine tenths: a few joints without a length of their own say nothing.
+    let beside = ratios.len() / 20;
+    let (least, most) = (ratios[beside], ratios[ratios.len() - 1 - beside]);
+    let size_beyond = |factor: f64| (median / factor).ln().abs();
+    if most <= least * (1.0 + ONE_FACTOR) && size_beyond(1.0) > MOST_LARGER.ln() {
+        return median;
+    }
+    let pairs = UNITS.iter().flat_map(|own| UNITS.iter().map(move |other| other / own));
+    pairs
+        .filter(|&factor| size_beyond(factor) <= MOST_LARGER.ln())
+        .min_by(|&a, &b| size_beyond(a).total_cmp(&size_beyond(b)))
+        .unwrap_or(median)
 }
 
 /// A length that tells how large a body is: its longest chain of limbs.

@@ -24,8 +24,8 @@ pub(super) struct Row {
     pub(super) scales: Option<Vec<DVec3>>,
 }
 
-/// Which frames of a result are frames of the first clip, with its very numbers: that frame's index.
-pub(super) type Kept<'a> = &'a dyn Fn(usize) -> Option<usize>;
+/// Which frames of a result are frames of the first clip, with its very numbers: that frame's index. `None` where no frame is.
+pub(super) type Kept<'a> = Option<&'a dyn Fn(usize) -> Option<usize>>;
 
 /// Fails for a clip that shows nothing.
 pub(super) fn check_frames(clip: &Clip) -> Result<(), BlendError> {
@@ -74,13 +74,14 @@ pub(super) fn tracks(first: &JointTracks, times: &Times, row: Row, kept: Kept<'_
         })
     };
     JointTracks {
-        rotation: row.rotations.map(|keys| rotation(first.rotation.as_ref(), times, &keys, kept)),
+        rotation: row.rotations.map(|keys| rotation(first.rotation.as_ref(), times, keys, kept)),
         translation: vectors(row.translations, first.translation.as_ref()),
         scale: vectors(row.scales, first.scale.as_ref()),
     }
 }
 
 fn keep<T: Copy>(keys: &mut [T], from: &[T], kept: Kept<'_>) {
+    let Some(kept) = kept else { return };
     for (frame, key) in keys.iter_mut().enumerate() {
         if let Some(&own) = kept(frame).and_then(|own| from.get(own)) {
             *key = own;
@@ -88,20 +89,11 @@ fn keep<T: Copy>(keys: &mut [T], from: &[T], kept: Kept<'_>) {
     }
 }
 
-fn rotation(like: Option<&RotationTrack>, times: &Times, keys: &[Rotor], kept: Kept<'_>) -> RotationTrack {
-    let mut last = keys.first().copied().unwrap_or(Rotor::IDENTITY);
-    let mut aligned: Vec<Rotor> = Vec::with_capacity(keys.len());
-    for (frame, key) in keys.iter().enumerate() {
-        let own = kept(frame).and_then(|own| like?.keys.get(own).copied());
-        let key = own.unwrap_or_else(|| key.aligned_to(last));
-        if key.is_finite() {
-            last = key;
-        }
-        aligned.push(key);
-    }
+fn rotation(like: Option<&RotationTrack>, times: &Times, keys: Vec<Rotor>, kept: Kept<'_>) -> RotationTrack {
     let stored = match like.map(|track| &track.stored) {
         Some(Stored::Angles(angles)) => {
-            Stored::Angles(FileAngles { degrees: angles_of(angles, keys, kept).into(), ..angles.clone() })
+            let degrees = angles_of(angles, &keys, kept).into();
+            Stored::Angles(FileAngles { degrees, ..angles.clone() })
         }
         Some(Stored::PlaneAngles(degrees)) => {
             let mut own: Vec<[f64; 3]> = keys.iter().map(|key| key.plane_angles().to_degrees()).collect();
@@ -110,23 +102,47 @@ fn rotation(like: Option<&RotationTrack>, times: &Times, keys: &[Rotor], kept: K
         }
         Some(Stored::Rotors) | None => Stored::Rotors,
     };
-    let track = RotationTrack::from_rotors(times.clone(), aligned);
+    let own = |frame: usize| like?.keys.get(kept?(frame)?).copied();
+    let track = RotationTrack::from_rotors(times.clone(), aligned(keys, kept.map(|_| &own as _)));
     let is_held = like.is_some_and(|like| like.paths == Paths::Every(PathKind::Hold));
     let paths = if is_held { Paths::Every(PathKind::Hold) } else { track.paths.clone() };
     RotationTrack { paths, stored, ..track }
 }
 
+/// Keys on the side of the key before; those that are kept, as they are.
+fn aligned(mut keys: Vec<Rotor>, own: Option<&dyn Fn(usize) -> Option<Rotor>>) -> Vec<Rotor> {
+    let mut last = keys.first().copied().unwrap_or(Rotor::IDENTITY);
+    // The usual case by itself: nothing is asked of a frame.
+    let Some(own) = own else {
+        for key in &mut keys {
+            *key = key.aligned_to(last);
+            if key.is_finite() {
+                last = *key;
+            }
+        }
+        return keys;
+    };
+    for (frame, key) in keys.iter_mut().enumerate() {
+        *key = own(frame).unwrap_or_else(|| key.aligned_to(last));
+        if key.is_finite() {
+            last = *key;
+        }
+    }
+    keys
+}
+
 /// File angles in degrees: the first clip's own where its frames are kept, and continuous with them elsewhere.
 fn angles_of(angles: &FileAngles, keys: &[Rotor], kept: Kept<'_>) -> Vec<[f64; 3]> {
+    let own = |frame: usize| angles.degrees.get(kept?(frame)?);
     let mut degrees: Vec<[f64; 3]> = Vec::with_capacity(keys.len());
     let mut frame = 0;
     while frame < keys.len() {
-        if let Some(own) = kept(frame).and_then(|own| angles.degrees.get(own)) {
+        if let Some(own) = own(frame) {
             degrees.push(*own);
             frame += 1;
             continue;
         }
-        let is_made = |frame: &usize| kept(*frame).and_then(|own| angles.degrees.get(own)).is_none();
+        let is_made = |frame: &usize| own(*frame).is_none();
         let end = (frame..keys.len()).take_while(is_made).count() + frame;
         let is_sound = |triple: &&[f64; 3]| triple.iter().all(|angle| angle.is_finite());
         let near = degrees.iter().rev().find(is_sound).or(angles.degrees.iter().find(is_sound));

@@ -51,7 +51,8 @@ impl GroundMove {
     }
 }
 
-/// The joints that carry a clip's whole motion: the topmost that are listed or animated. What stands above them keeps still.
+/// The joints that carry a clip's whole motion: the topmost that are listed or animated. What stands above them keeps still. In a table
+/// without a hierarchy all joints stand side by side at the origin; there it is those that are placed.
 pub(super) fn tops(clip: &Clip) -> Vec<usize> {
     let joints = clip.skeleton.joints();
     let mut is_below = vec![false; joints.len()];
@@ -67,6 +68,15 @@ pub(super) fn tops(clip: &Clip) -> Vec<usize> {
             is_below[index] = true;
             tops.push(index);
         }
+    }
+    let is_placed = |&top: &usize| {
+        let track = clip.joints.get(top).and_then(|tracks| tracks.translation.as_ref());
+        let is_moved = track.is_some_and(|track| !track.keys.is_empty());
+        let rest = joints[top].rest.translation;
+        is_moved || rest != DVec3::ZERO || joints.iter().any(|joint| joint.parent == Some(top))
+    };
+    if tops.iter().any(is_placed) {
+        tops.retain(is_placed);
     }
     tops
 }

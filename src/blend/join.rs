@@ -8,7 +8,7 @@ use crate::skeleton::smooth_step;
 use super::cloud::{Cloud, DistancePicture, Landmarks};
 use super::frames::{self, Row, SLACK};
 use super::ground::{GroundMove, frame_above, tops};
-use super::mix::{between, lines, said, set_down};
+use super::mix::{between, lines, said, set_down, shares};
 use super::{BlendError, Mask};
 
 /// Frames looked at in each window of a distance picture: few tell it apart.
@@ -45,10 +45,19 @@ impl JoinPlace {
             && self.second_secs >= -slack
             && self.second_secs + self.overlap_secs <= b.duration_secs + slack;
         if fits {
-            Ok(())
-        } else {
-            Err(BlendError::Overlap { most_secs: shorter, found_secs: self.overlap_secs })
+            return Ok(());
         }
+        if let Some(clip) = [a, b].iter().find(|clip| clip.duration_secs <= 0.0) {
+            return Err(BlendError::OneFrame(clip.name.clone()));
+        }
+        if self.overlap_secs > 0.0 && self.overlap_secs <= shorter + slack {
+            return Err(BlendError::Place {
+                overlap_secs: self.overlap_secs,
+                begins_secs: [self.first_secs, self.second_secs],
+                lengths_secs: [a.duration_secs, b.duration_secs],
+            });
+        }
+        Err(BlendError::Overlap { most_secs: shorter, found_secs: self.overlap_secs })
     }
 }
 
@@ -88,7 +97,7 @@ pub fn join(a: &Clip, b: &Clip, place: JoinPlace, mask: &Mask) -> Result<Clip, B
     let all_tops: Vec<usize> = tops(a);
     let joints = (0..a.joints.len()).map(|joint| {
         let factor = mask.of(joint);
-        let share = |frame: usize| weights[frame] * factor;
+        let shares = shares(&weights, factor);
         let is_top = all_tops.contains(&joint);
         let [turns, moves, sizes] = said(a, b, joint);
         if !(turns || moves || sizes || is_top) {
@@ -104,22 +113,22 @@ pub fn join(a: &Clip, b: &Clip, place: JoinPlace, mask: &Mask) -> Result<Clip, B
         }
         let row = Row {
             rotations: (turns || is_top)
-                .then(|| between(&a.rotations_at(joint, &own_secs), &other_turns, &share)),
+                .then(|| between(&a.rotations_at(joint, &own_secs), &other_turns, &shares)),
             translations: (moves || is_top)
-                .then(|| lines(&frames::places(a, joint, &own_secs), &other_places, &share)),
+                .then(|| lines(&frames::places(a, joint, &own_secs), &other_places, &shares)),
             scales: sizes.then(|| {
-                lines(&frames::sizes(a, joint, &own_secs), &frames::sizes(b, joint, &other_secs), &share)
+                lines(&frames::sizes(a, joint, &own_secs), &frames::sizes(b, joint, &other_secs), &shares)
             }),
         };
         let on_frames = a.rotation(joint).is_none_or(|track| track.times == a.grid.times);
         let kept = |frame: usize| (on_frames && frame < held && weights[frame] == 0.0).then_some(frame);
-        Arc::new(frames::tracks(&a.joints[joint], &times, row, &kept))
+        Arc::new(frames::tracks(&a.joints[joint], &times, row, Some(&kept)))
     });
     let joints = joints.collect();
     Ok(frames::clip_of(a, times.clone(), joints))
 }
 
-/// The move that sets `b` down on `a`'s ground in a join: the best fit of both over the overlap.
+/// The move that sets `b` down on `a`'s ground in a join: turned to face as `a` does over the overlap, and where both fit best.
 pub fn join_ground(a: &Clip, b: &Clip, place: JoinPlace) -> GroundMove {
     let landmarks = Landmarks::of(a);
     let count = ((place.overlap_secs * a.grid.rate).round() as usize).max(1) + 1;
@@ -128,11 +137,12 @@ pub fn join_ground(a: &Clip, b: &Clip, place: JoinPlace) -> GroundMove {
     };
     let own = Cloud::of(a, &secs(place.first_secs), &landmarks);
     let other = Cloud::of(b, &secs(place.second_secs), &landmarks);
-    own.fit_pairs(&other, (0..count).map(|frame| (frame, frame))).1
+    own.set_down(&other, (0..count).map(|frame| (frame, frame))).1
 }
 
 /// How far apart the poses of `a` and `b` are over windows of the overlap's length that begin at each pair of times, on a
-/// grid of at most `most` rows and columns: what a place for a join is chosen from (Kovar, Gleicher & Pighin 2002).
+/// grid of at most `most` rows and columns: what a place for a join is chosen from (Kovar, Gleicher & Pighin 2002, but for the turn: the
+/// second clip is turned as the join will turn it, [`Cloud::facing`]).
 ///
 /// # Errors
 /// When the overlap does not fit in both clips or one has no frames.
@@ -166,7 +176,7 @@ pub fn join_distances(
     for row in 0..first_secs.len() {
         for column in 0..second_secs.len() {
             let pairs = (0..SAMPLES).map(|k| (row * SAMPLES + k, column * SAMPLES + k));
-            distances.push(own.fit_pairs(&other, pairs).0.sqrt());
+            distances.push(own.set_down(&other, pairs).0.sqrt());
         }
     }
     Ok(DistancePicture { first_secs, second_secs, distances })

@@ -1,5 +1,6 @@
 //! Mixing: between two clips by a weight, frame by frame or with their steps in time.
 
+use std::borrow::Cow;
 use std::cmp::Ordering;
 use std::collections::BTreeSet;
 use std::sync::Arc;
@@ -11,8 +12,8 @@ use crate::rotor::Rotor;
 use crate::rotor::batch::{self, Level, Streams};
 use crate::skeleton::smooth_step;
 
-use super::feet::{self, Origins};
-use super::frames::{self, Row, SLACK};
+use super::feet;
+use super::frames::{self, Kept, Row, SLACK};
 use super::ground::{GroundMove, frame_above, tops};
 use super::registration::Registration;
 use super::root::{RootFrom, onto_one_way, summed_way};
@@ -105,8 +106,7 @@ pub fn mix_by(a: &Clip, b: &Clip, how: &MixHow) -> Result<Clip, BlendError> {
     }
     let secs: Vec<f64> = mixed.grid.times.iter().collect();
     let weights: Vec<f64> = secs.iter().map(|&secs| weight.at(secs)).collect();
-    let origins = Origins { first_secs: &secs, second_secs: &secs, weights: &weights };
-    Ok(feet::held(&mixed, a, b, &origins, mask).map_or(mixed, |(held, _)| held))
+    Ok(feet::held_of_two(mixed, [a, b], [&secs, &secs], &weights, mask))
 }
 
 /// The moves that set down both clips' poses at some times, for the second one's weights there; `None` where they stay.
@@ -143,7 +143,7 @@ fn mix_on_ground(
         if (factor == 0.0 && !is_led) || is_same || !(turns || moves || sizes || is_led) {
             return base.joints[joint].clone();
         }
-        let share = |frame: usize| weights[frame] * factor;
+        let shares = shares(&weights, factor);
         let is_set_down = onto.is_some();
         let mut both_turns =
             (turns || is_set_down).then(|| [&base, b].map(|clip| clip.rotations_at(joint, &times)));
@@ -158,16 +158,17 @@ fn mix_on_ground(
             }
         }
         let row = Row {
-            rotations: both_turns.map(|[own, other]| between(&own, &other, &share)),
-            translations: both_places.map(|[own, other]| lines(&own, &other, &share)),
+            rotations: both_turns.map(|[own, other]| between(&own, &other, &shares)),
+            translations: both_places.map(|[own, other]| lines(&own, &other, &shares)),
             scales: sizes.then(|| {
-                lines(&frames::sizes(&base, joint, &times), &frames::sizes(b, joint, &times), &share)
+                lines(&frames::sizes(&base, joint, &times), &frames::sizes(b, joint, &times), &shares)
             }),
         };
         // Where keys stand on frames, the ones that nothing is mixed into keep their numbers.
         let on_frames = base.rotation(joint).is_none_or(|track| track.times == base.grid.times);
-        let kept = |frame: usize| (on_frames && share(frame) == 0.0 && !is_moved(frame)).then_some(frame);
-        Arc::new(frames::tracks(&base.joints[joint], &base.grid.times, row, &kept))
+        let kept = |frame: usize| (shares[frame] == 0.0 && !is_moved(frame)).then_some(frame);
+        let kept: Kept<'_> = if on_frames && shares.contains(&0.0) { Some(&kept) } else { None };
+        Arc::new(frames::tracks(&base.joints[joint], &base.grid.times, row, kept))
     });
     let joints = joints.collect();
     Ok(frames::clip_of(&base, base.grid.times.clone(), joints))
@@ -184,48 +185,63 @@ pub(super) fn said(a: &Clip, b: &Clip, joint: usize) -> [bool; 3] {
     ]
 }
 
+/// So much of each weight.
+pub(super) fn shares(weights: &[f64], factor: f64) -> Cow<'_, [f64]> {
+    if factor == 1.0 {
+        return Cow::Borrowed(weights);
+    }
+    Cow::Owned(weights.iter().map(|weight| weight * factor).collect())
+}
+
 /// The short way between turns; the ends are exact, and so is what is equal.
-pub(super) fn between(a: &[Rotor], b: &[Rotor], share: &dyn Fn(usize) -> f64) -> Vec<Rotor> {
+pub(super) fn between(a: &[Rotor], b: &[Rotor], shares: &[f64]) -> Vec<Rotor> {
     /// Rows of a round: what is in work stays in the first cache.
     const TILE: usize = 256;
     let [mut from, mut to, mut out]: [Streams<f64, 4>; 3] = std::array::from_fn(|_| Streams::zeros(TILE));
-    let mut shares = [0.0; TILE];
     let mut found = Vec::with_capacity(a.len());
-    for (tile, (a, b)) in a.chunks(TILE).zip(b.chunks(TILE)).enumerate() {
-        let rows = 0..a.len().min(b.len());
-        for (row, (a, b)) in a.iter().zip(b).enumerate() {
-            from.set(row, [a.s, a.yz, a.zx, a.xy]);
-            to.set(row, [b.s, b.yz, b.zx, b.xy]);
-            shares[row] = share(tile * TILE + row);
+    for ((a, b), shares) in a.chunks(TILE).zip(b.chunks(TILE)).zip(shares.chunks(TILE)) {
+        let count = a.len().min(b.len()).min(shares.len());
+        for (streams, rotors) in [(&mut from, a), (&mut to, b)] {
+            let [s, yz, zx, xy] = streams.parts_mut().map(|part| &mut part[..count]);
+            let parts = s.iter_mut().zip(yz).zip(zx.iter_mut().zip(xy));
+            for (rotor, ((s, yz), (zx, xy))) in rotors.iter().zip(parts) {
+                (*s, *yz, *zx, *xy) = (rotor.s, rotor.yz, rotor.zx, rotor.xy);
+            }
         }
         batch::slerp(
             Level::best(),
-            from.parts().map(|part| &part[rows.clone()]),
-            to.parts().map(|part| &part[rows.clone()]),
-            &shares[rows.clone()],
-            out.parts_mut().map(|part| &mut part[rows.clone()]),
+            from.parts().map(|part| &part[..count]),
+            to.parts().map(|part| &part[..count]),
+            &shares[..count],
+            out.parts_mut().map(|part| &mut part[..count]),
         );
-        found.extend(rows.map(|row| {
-            let [s, yz, zx, xy] = out.get(row);
-            match shares[row] {
-                0.0 => a[row],
-                1.0 => b[row],
-                _ if a[row] == b[row] => a[row],
-                _ => Rotor::new(s, yz, zx, xy),
+        let [s, yz, zx, xy] = out.parts().map(|part| &part[..count]);
+        let made = s.iter().zip(yz).zip(zx.iter().zip(xy)).zip(shares).zip(a.iter().zip(b));
+        found.extend(made.map(|((((&s, &yz), (&zx, &xy)), &share), (&a, &b))| {
+            if share == 0.0 || a == b {
+                a
+            } else if share == 1.0 {
+                b
+            } else {
+                Rotor::new(s, yz, zx, xy)
             }
         }));
     }
     found
 }
 
-pub(super) fn lines(a: &[DVec3], b: &[DVec3], share: &dyn Fn(usize) -> f64) -> Vec<DVec3> {
-    let one = |(frame, (&a, &b)): (usize, (&DVec3, &DVec3))| match share(frame) {
-        0.0 => a,
-        1.0 => b,
-        // What is equal stays so to the last bit.
-        share => a + (b - a) * share,
+pub(super) fn lines(a: &[DVec3], b: &[DVec3], shares: &[f64]) -> Vec<DVec3> {
+    let one = |((&a, &b), &share): ((&DVec3, &DVec3), &f64)| {
+        if share == 0.0 {
+            a
+        } else if share == 1.0 {
+            b
+        } else {
+            // What is equal stays so to the last bit.
+            a + (b - a) * share
+        }
     };
-    a.iter().zip(b).enumerate().map(one).collect()
+    a.iter().zip(b).zip(shares).map(one).collect()
 }
 
 /// How two clips are mixed, frame by frame or in step.
@@ -278,7 +294,7 @@ pub fn mix_aligned(a: &Clip, b: &Clip, along: &Registration, how: &MixHow) -> Re
     let moves = ground_moves(&own_path, &other_path, &stops, &ground_weight);
     let joints = (0..a.joints.len()).map(|joint| {
         let factor = mask.of(joint);
-        let share = |frame: usize| weights[frame] * factor;
+        let shares = shares(&weights, factor);
         let [turns, places, sizes] = said(a, b, joint);
         let is_top = tops.contains(&joint);
         if !(turns || places || sizes || is_top) {
@@ -298,19 +314,20 @@ pub fn mix_aligned(a: &Clip, b: &Clip, along: &Registration, how: &MixHow) -> Re
             }
         }
         let row = Row {
-            rotations: (turns || is_top).then(|| between(&own_turns, &other_turns, &share)),
-            translations: (places || is_top).then(|| lines(&own_places, &other_places, &share)),
+            rotations: (turns || is_top).then(|| between(&own_turns, &other_turns, &shares)),
+            translations: (places || is_top).then(|| lines(&own_places, &other_places, &shares)),
             scales: sizes.then(|| {
-                lines(&frames::sizes(a, joint, &own_secs), &frames::sizes(b, joint, &other_secs), &share)
+                lines(&frames::sizes(a, joint, &own_secs), &frames::sizes(b, joint, &other_secs), &shares)
             }),
         };
-        Arc::new(frames::tracks(&a.joints[joint], &times, row, &|_| None))
+        Arc::new(frames::tracks(&a.joints[joint], &times, row, None))
     });
     let joints = joints.collect();
     let mixed = frames::clip_of(a, times.clone(), joints);
-    let origins = Origins { first_secs: &own_secs, second_secs: &other_secs, weights: &weights };
-    let held = holds_feet.then(|| feet::held(&mixed, a, b, &origins, mask)).flatten();
-    Ok(held.map_or(mixed, |(held, _)| held))
+    if !holds_feet {
+        return Ok(mixed);
+    }
+    Ok(feet::held_of_two(mixed, [a, b], [&own_secs, &other_secs], &weights, mask))
 }
 
 /// The joints that carry the whole motion of either clip.

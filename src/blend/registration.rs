@@ -70,7 +70,12 @@ pub fn align(a: &Clip, b: &Clip) -> Result<Registration, BlendError> {
         rows: own.len(),
         columns: other.len(),
     })?;
-    let turns = unrolled(path.cells.iter().map(|&(i, j)| own.fit(i, &other, j, 2 * reach).1.turn_rad));
+    let last = count - 1;
+    let about = |i: usize, j: usize| {
+        let reach = (2 * reach).min(i).min(j).min(last - i).min(last - j);
+        (0..=2 * reach).map(move |step| (i + step - reach, j + step - reach))
+    };
+    let turns = unrolled(path.cells.iter().map(|&(i, j)| own.facing(&other, about(i, j))));
     Ok(through(&path, &turns, count, [a.duration_secs, b.duration_secs]))
 }
 
@@ -195,6 +200,41 @@ impl Registration {
             second_secs: monotone(&self.places, &self.second_secs, place)[0],
             turn_rad: monotone(&self.places, &self.turns_rad, place)[0],
         }
+    }
+
+    /// What belongs to a time of the first clip; beyond its ends what belongs to them.
+    pub fn at_first(&self, first_secs: f64) -> Stop {
+        /// Halvings to the last bit of a place, should Newton's steps not settle before.
+        const MOST_STEPS: usize = 60;
+        let last = self.places.len() - 1;
+        let (first, end) = (self.first_secs[0], self.first_secs[last]);
+        if first_secs <= first || first_secs >= end {
+            let place = if first_secs <= first { self.places[0] } else { self.places[last] };
+            return Stop { first_secs, ..self.at(place) };
+        }
+        // Times rise from knot to knot.
+        let knot = self.first_secs.partition_point(|&secs| secs <= first_secs) - 1;
+        let [mut from, mut to] = [self.places[knot], self.places[knot + 1]];
+        let chord =
+            (first_secs - self.first_secs[knot]) / (self.first_secs[knot + 1] - self.first_secs[knot]);
+        let mut place = from + (to - from) * chord;
+        for _ in 0..MOST_STEPS {
+            let [secs, slope] = monotone(&self.places, &self.first_secs, place);
+            let beyond = secs - first_secs;
+            if beyond < 0.0 {
+                from = place;
+            } else {
+                to = place;
+            }
+            let next = place - beyond / slope;
+            let next = if next >= from && next <= to { next } else { f64::midpoint(from, to) };
+            let is_settled = (next - place).abs() <= f64::EPSILON * place;
+            place = next;
+            if is_settled {
+                break;
+            }
+        }
+        Stop { first_secs, ..self.at(place) }
     }
 
     /// The frames of a mix at `rate`: its clock runs at the weighted mean of both clips' paces. A weight of 1 all along gives
@@ -335,6 +375,13 @@ mod tests {
             }
             assert_eq!(stops.len(), ((2.0 - 0.7 * w) * 30.0 + 1e-6) as usize + 1);
         }
+        // What belongs to a time of the first clip is what the curve has beside it.
+        for step in 0..=97 {
+            let stop = along.at(f64::from(step) / 97.0);
+            let found = along.at_first(stop.first_secs);
+            assert!((found.second_secs - stop.second_secs).abs() < 1e-12, "{found:?} {stop:?}");
+        }
+        assert_eq!([along.at_first(-1.0), along.at_first(9.0)].map(|stop| stop.second_secs), [0.0, 1.3]);
     }
 
     #[test]

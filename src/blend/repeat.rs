@@ -80,7 +80,7 @@ pub fn repeat(clip: &Clip, times: usize) -> Result<Clip, BlendError> {
         };
         let on_frames = clip.rotation(joint).is_none_or(|track| track.times == clip.grid.times);
         let kept = |frame: usize| (on_frames && frame < round).then_some(frame);
-        Arc::new(frames::tracks(&clip.joints[joint], &out_times, row, &kept))
+        Arc::new(frames::tracks(&clip.joints[joint], &out_times, row, Some(&kept)))
     });
     let joints = joints.collect();
     Ok(frames::clip_of(clip, out_times.clone(), joints))
@@ -141,7 +141,7 @@ pub fn with_first_again(clip: &Clip) -> Result<Clip, BlendError> {
         };
         let on_frames = clip.rotation(joint).is_none_or(|track| track.times == clip.grid.times);
         let kept = |frame: usize| (on_frames && frame < count).then_some(frame);
-        Arc::new(frames::tracks(&clip.joints[joint], &times, row, &kept))
+        Arc::new(frames::tracks(&clip.joints[joint], &times, row, Some(&kept)))
     });
     let joints = joints.collect();
     Ok(frames::clip_of(clip, times.clone(), joints))

@@ -48,7 +48,20 @@ fn headings(a: &Clip, b: &Clip, times: &[f64]) -> Vec<f64> {
     let landmarks = Landmarks::of(a);
     let [own, other] = [a, b].map(|clip| Cloud::of(clip, times, &landmarks));
     let reach = (HEADING_SECS * a.grid.rate).round() as usize;
-    (0..times.len()).map(|frame| own.fit(frame, &other, frame, reach).1.turn_rad).collect()
+    let last = times.len().saturating_sub(1);
+    let about = |frame: usize| {
+        let reach = reach.min(frame).min(last - frame);
+        (frame - reach..=frame + reach).map(|near| (near, near))
+    };
+    (0..times.len()).map(|frame| own.facing(&other, about(frame))).collect()
+}
+
+/// The move that sets `b`'s pose at a time down on `a`'s at one of its own: facing alike, and where places are nearest.
+pub fn pose_onto(a: &Clip, first_secs: f64, b: &Clip, second_secs: f64) -> GroundMove {
+    let landmarks = Landmarks::of(a);
+    let [own, other] =
+        [(a, first_secs), (b, second_secs)].map(|(clip, secs)| Cloud::of(clip, &[secs], &landmarks));
+    own.set_down(&other, std::iter::once((0, 0))).1
 }
 
 /// For each time the moves that bring both clips' poses there onto the path and heading of the one whose way is taken. `None` where

@@ -144,18 +144,18 @@ pub(super) struct BlendArgs {
     #[arg(short, long, value_name = "OUT")]
     pub(super) output: PathBuf,
     /// B after A, overlapping so many seconds, set down where A is and as it is heading
-    #[arg(long, value_name = "SECONDS")]
+    #[arg(long, value_name = "SECONDS", allow_negative_numbers = true)]
     pub(super) join: Option<f64>,
     /// Between A (0) and B (1), frame by frame up to the shorter end; a weight, or a curve of weights at seconds of A, smooth
     /// between them, such as 0:0,1.5:1
-    #[arg(long, value_name = "W|S:W,…", value_parser = parse_weights)]
+    #[arg(long, value_name = "W|S:W,…", value_parser = parse_weights, allow_hyphen_values = true)]
     pub(super) mix: Option<WeightCurve>,
     /// What B does beyond its first frame laid over A, so many times
     #[arg(long, value_name = "W", allow_negative_numbers = true)]
     pub(super) add: Option<f64>,
     /// The mean of A and all B, frame by frame up to the shortest end: a weight for A and one for each B, such as 1,1,2; only
     /// their ratio matters
-    #[arg(long, value_name = "W,…", value_delimiter = ',')]
+    #[arg(long, value_name = "W,…", value_delimiter = ',', allow_negative_numbers = true)]
     pub(super) mean: Option<Vec<f64>>,
     /// With --join: overlap where the poses of both are nearest, not the end of A and the start of B
     #[arg(long, requires = "join", conflicts_with_all = ["mix", "add", "mean"])]
@@ -166,21 +166,27 @@ pub(super) struct BlendArgs {
     /// With --add: whether it is composed in the joint's own frame or in its parent's
     #[arg(long, value_enum, value_name = "body|parent", default_value_t, conflicts_with_all = ["join", "mix", "mean"])]
     pub(super) side: SideName,
-    /// With --mix: bring steps into time with each other, and B onto A's ground
-    #[arg(long, requires = "mix", conflicts_with_all = ["join", "add", "mean"])]
+    /// With --mix and --mean: bring steps into time with A's, and all onto A's ground
+    #[arg(long, conflicts_with_all = ["join", "add"])]
     pub(super) align: bool,
     /// With --mix: whose path and heading on the ground is taken
     #[arg(long, value_enum, value_name = "both|a|b", default_value_t, conflicts_with_all = ["join", "add", "mean"])]
     pub(super) root: RootName,
-    /// With --mix alone: hold feet where they stand, as --align and --join do; the mix is then no longer frame by frame in the legs
-    #[arg(long, requires = "mix", conflicts_with_all = ["join", "add", "mean"])]
+    /// With --mix and --mean alone: hold feet where they stand, as --align and --join do; it is then no longer frame by frame in the legs
+    #[arg(long, conflicts_with_all = ["join", "add"])]
     pub(super) plant_feet: bool,
     /// With --align or --join: leave feet as they come out
-    #[arg(long, conflicts_with_all = ["plant_feet", "add", "mean"])]
+    #[arg(long, conflicts_with_all = ["plant_feet", "add"])]
     pub(super) no_plant_feet: bool,
-    /// Reach these joints only; all others follow A
-    #[arg(long, value_name = "J,…", value_delimiter = ',')]
+    /// Reach these joints only; all others follow A. J=F takes the share F of the blend, from 0 to 1
+    #[arg(long, value_name = "J[=F],…", value_delimiter = ',')]
     pub(super) joints: Option<Vec<String>>,
+    /// Reach these joints and all below them; J=F as with --joints, which has the last word on a joint of both
+    #[arg(long, value_name = "J[=F],…", value_delimiter = ',')]
+    pub(super) limbs: Option<Vec<String>>,
+    /// With --limbs: take so many joints above each along, less and less
+    #[arg(long, value_name = "N", requires = "limbs", default_value_t = 0)]
+    pub(super) soft: usize,
     /// Allow an input to be replaced
     #[arg(long)]
     pub(super) force: bool,

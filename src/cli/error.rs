@@ -98,6 +98,18 @@ pub enum CliError {
         /// Why.
         source: RetargetError,
     },
+    /// A clip of another body that is to be blended and can't be carried over.
+    #[error(
+        "{path}: is of another body than the first clip: {}; carry it over with retarget and a joint map first",
+        without_advice(&.source.to_string()),
+        path = path.display()
+    )]
+    Carry {
+        /// The clip's file.
+        path: PathBuf,
+        /// Why.
+        source: RetargetError,
+    },
     /// A picture that can't be made.
     #[error("{path}: {source}; choose another size with --size", path = path.display())]
     Picture {
@@ -143,6 +155,11 @@ impl From<io::Error> for CliError {
 /// A message that says what to do: what it says already, else the advice.
 fn with_advice(message: &str, advice: &str) -> String {
     if message.contains("; ") { message.to_owned() } else { format!("{message}; {advice}") }
+}
+
+/// A message without the advice it ends with: what helps elsewhere may not help here.
+fn without_advice(message: &str) -> &str {
+    message.split_once("; ").map_or(message, |(what, _)| what)
 }
 
 fn advice_for_open(error: &exchange::OpenError) -> &'static str {

@@ -33,6 +33,20 @@ pub struct Joint {
     pub tips: Vec<DVec3>,
 }
 
+impl Joint {
+    /// A joint that stands unturned at `place` in its parent, as clips are built with by hand.
+    pub fn placed(name: &str, number: usize, parent: Option<usize>, place: DVec3) -> Self {
+        Self {
+            name: name.to_owned(),
+            number,
+            parent,
+            rest: Transform::from_translation(place),
+            kind: JointKind::Joint,
+            tips: Vec::new(),
+        }
+    }
+}
+
 /// Joints with parents before children, and a unique label for each.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Skeleton {

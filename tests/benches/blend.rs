@@ -14,7 +14,7 @@ use glam::DVec3;
 use turnwright::blend::{Mask, MixAlong, align, mix};
 use turnwright::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times, VectorTrack};
 use turnwright::rotor::{Bivector, Rotor};
-use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
+use turnwright::skeleton::{Joint, Skeleton};
 
 type Criterion = criterion::Criterion<CpuTime>;
 
@@ -23,13 +23,9 @@ const RATE: f64 = 60.0;
 
 /// A tree of joints that swing to and fro at a pace of `pace`, on a walking root.
 fn clip(frames: usize, pace: f64) -> Clip {
-    let joint = |number: usize| Joint {
-        name: format!("J{number}"),
-        number,
-        parent: number.checked_sub(1).map(|before| before - before % 4),
-        rest: Transform::from_translation(DVec3::new(0.1, 0.4, 0.02 * number as f64)),
-        kind: JointKind::Joint,
-        tips: vec![],
+    let joint = |number: usize| {
+        let parent = number.checked_sub(1).map(|before| before - before % 4);
+        Joint::placed(&format!("J{number}"), number, parent, DVec3::new(0.1, 0.4, 0.02 * number as f64))
     };
     let times = Times::Even { step_secs: 1.0 / RATE, count: frames };
     let tracks = (0..JOINTS).map(|joint| {

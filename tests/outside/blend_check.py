@@ -184,8 +184,8 @@ def squares(turns, share, at):
     return float(share @ (at.inv() * turns).magnitude() ** 2)
 
 
-def places_at(clip, time, skeleton):
-    """Where joints are with the limbs of another take's skeleton: a second clip comes onto the first one's."""
+def poses_at(clip, time, skeleton):
+    """How joints are turned and where they are with the limbs of another take's skeleton: a second clip comes onto the first one's."""
     world = []
     for joint, (turn, place) in zip(skeleton, local_at(clip, time)):
         if joint["parent"] is not None:
@@ -193,11 +193,12 @@ def places_at(clip, time, skeleton):
             up_turn, up_place = world[joint["parent"]]
             turn, place = up_turn * turn, up_place + up_turn.apply(place)
         world.append((turn, place))
-    return np.array([place for _, place in world])
+    return Rotation.concatenate([turn for turn, _ in world]), np.array([place for _, place in world])
 
 
 def best_move(first, second, start, overlap):
-    """The turn about the vertical and the shift that bring the second clip's overlap nearest to the first's, by scipy's minimiser."""
+    """The turn about the vertical that brings the turns of the second clip's joints nearest to the first's over the overlap, and then the shift
+    along the ground that brings their places nearest, both by scipy's minimiser."""
     joints, step, _ = first
     lengths = [0.0 if joint["parent"] is None else float(np.linalg.norm(joint["offset"])) for joint in joints]
     parents = {joint["parent"] for joint in joints}
@@ -206,17 +207,26 @@ def best_move(first, second, start, overlap):
     weights = weights[chosen]
     count = round(overlap / step) + 1
     at = [overlap * frame / (count - 1) for frame in range(count)]
-    own = np.concatenate([places_at(first, start + secs, joints)[chosen] for secs in at])
-    other = np.concatenate([places_at(second, secs, joints)[chosen] for secs in at])
-    roots = np.sqrt(np.tile(weights / weights.sum(), count))[:, None]
+    own = [poses_at(first, start + secs, joints) for secs in at]
+    other = [poses_at(second, secs, joints) for secs in at]
+    own_turns, other_turns = (np.concatenate([turns[chosen].as_matrix() for turns, _ in poses]) for poses in (own, other))
+    own_places, other_places = (np.concatenate([places[chosen] for _, places in poses]) for poses in (own, other))
+    roots = np.sqrt(np.tile(weights / weights.sum(), count))
 
-    def residuals(place):
-        turn = Rotation.from_euler("y", place[0])
-        return (roots * (own - turn.apply(other) - [place[1], 0.0, place[2]])).ravel()
+    def turns_apart(turn):
+        return (roots[:, None, None] * (own_turns - Rotation.from_euler("y", turn[0]).as_matrix() @ other_turns)).ravel()
 
-    tries = [least_squares(residuals, [begin, 0, 0], jac="3-point", xtol=1e-15, ftol=1e-15, gtol=1e-15) for begin in (-2, 0, 2)]
-    turn, x, z = min(tries, key=lambda found: found.cost).x
-    return Rotation.from_euler("y", turn), np.array([x, 0.0, z])
+    def fitted(residuals, begin):
+        return least_squares(residuals, begin, jac="3-point", xtol=1e-15, ftol=1e-15, gtol=1e-15)
+
+    turn = min((fitted(turns_apart, [begin]) for begin in (-2, 0, 2)), key=lambda found: found.cost).x[0]
+    turned = Rotation.from_euler("y", turn)
+
+    def places_apart(shift):
+        return (roots[:, None] * (own_places - turned.apply(other_places) - [shift[0], 0.0, shift[1]])).ravel()
+
+    x, z = fitted(places_apart, [0, 0]).x
+    return turned, np.array([x, 0.0, z])
 
 
 def curve(knots):

@@ -21,7 +21,7 @@ use turnwright::scene::{
     BlendForm, BlendPass, ClipRef, ClipWork, Closing, Document, LoopPass, NoOthers, Pass, PassId, PassKind,
     SourceRef,
 };
-use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
+use turnwright::skeleton::{Joint, Skeleton};
 
 use crate::support::{assert_close, largest, numbers, shared, shared_json};
 
@@ -62,18 +62,10 @@ fn pairs() -> Vec<(&'static str, Arc<Clip>, Arc<Clip>)> {
 
 /// A skeleton of one root with a limb, and a clip of it from turns and places of the root.
 fn one_root(turns: &[Rotor], places: &[DVec3]) -> Clip {
-    let joint = |name: &str, number, parent, place| Joint {
-        name: name.to_owned(),
-        number,
-        parent,
-        rest: Transform::from_translation(place),
-        kind: JointKind::Joint,
-        tips: vec![],
-    };
     let skeleton = Skeleton::new(vec![
-        joint("root", 0, None, DVec3::ZERO),
-        joint("left", 1, Some(0), DVec3::new(0.3, 1.0, 0.1)),
-        joint("right", 2, Some(0), DVec3::new(-0.3, 0.8, 0.0)),
+        Joint::placed("root", 0, None, DVec3::ZERO),
+        Joint::placed("left", 1, Some(0), DVec3::new(0.3, 1.0, 0.1)),
+        Joint::placed("right", 2, Some(0), DVec3::new(-0.3, 0.8, 0.0)),
     ])
     .unwrap();
     let times = Times::Even { step_secs: 1.0 / 30.0, count: turns.len() };
@@ -352,8 +344,11 @@ fn masks_leave_the_rest_alone() {
             assert_eq!(!is_meant, made.same_joint(&a, joint), "{}", a.skeleton.label(joint));
         }
     }
-    let error = Mask::joints(&a.skeleton, &["Tail"]).unwrap_err();
-    assert_eq!(error, BlendError::NoSuchJoint("Tail".to_owned()));
+    let error = |label: &str| Mask::joints(&a.skeleton, &[label]).unwrap_err().to_string();
+    let near = error("left_arm");
+    assert!(near.contains("such as `LeftArm`") && near.ends_with("found `left_arm`"), "{near}");
+    let far = error("Tail");
+    assert!(far.contains("such as `Hips`, ") && far.contains(" more, found `Tail`"), "{far}");
     let limb = Mask::limb(&a.skeleton, "LeftArm", 2).unwrap();
     let factor = |label: &str| limb.of(a.skeleton.find(label).unwrap());
     assert_eq!(
@@ -370,8 +365,93 @@ fn bodies_that_are_not_one_are_told() {
     };
     let error = fit(&walk[0], &fox.skeleton).unwrap_err();
     assert!(error.to_string().contains("retarget"), "{error}");
-    let error = join(&fox, &fox, JoinPlace::end_to_start(&fox, 30.0), &Mask::all(&fox.skeleton)).unwrap_err();
-    assert!(matches!(error, BlendError::Overlap { .. }), "{error}");
+    let all = Mask::all(&fox.skeleton);
+    let refused = |clip: &Clip, place: JoinPlace| join(clip, &fox, place, &all).unwrap_err().to_string();
+    let error = refused(&fox, JoinPlace::end_to_start(&fox, 30.0));
+    assert!(
+        error.contains("an overlap above 0 and at most 0.708 s, the shorter clip, found 30 s"),
+        "{error}"
+    );
+    // One that is short enough and lies beyond an end, and a clip that is one pose.
+    let error = refused(&fox, JoinPlace { first_secs: 0.6, second_secs: 0.1, overlap_secs: 0.25 });
+    assert!(error.contains("found it to begin at 0.6 s of 0.708 s of the first and at 0.1 s of"), "{error}");
+    let pose = turnwright::clip::cut(&fox, 0.0, 0.0);
+    let error = refused(&pose, JoinPlace::end_to_start(&pose, 0.1));
+    assert!(error.contains("at least two frames each to join, found one frame in `Walk`"), "{error}");
+}
+
+/// Which way a clip's body goes along the ground between two times: the angle from +Z towards +X, degrees.
+fn heading_deg(clip: &Clip, from_secs: f64, to_secs: f64) -> f64 {
+    let body = clip.skeleton.listed().next().unwrap();
+    let worlds = clip.worlds_at(&[from_secs, to_secs]);
+    let way = worlds.position(body, 1) - worlds.position(body, 0);
+    way.x.atan2(way.z).to_degrees()
+}
+
+#[test]
+fn a_walk_goes_on_its_way_also_where_legs_are_out_of_step() {
+    // Joined to itself from eleven moments of the stride: where the other foot is in front, places alone are nearest with the body turned
+    // round. The way before and after is read off the places of the hips.
+    let Some(walk) = clips("data/bvh/cmu_02_01_walk.bvh").map(|clips| clips[0].clone()) else { return };
+    let mask = Mask::all(&walk.skeleton);
+    let mut turned_round = 0;
+    for begin in 0..11 {
+        let second_secs = 0.02 + 0.12 * f64::from(begin);
+        let place = JoinPlace { second_secs, ..JoinPlace::end_to_start(&walk, 0.2) };
+        let joined = join(&walk, &walk, place, &mask).unwrap();
+        let before = heading_deg(&joined, place.first_secs - 1.2, place.first_secs);
+        let after = heading_deg(&joined, joined.duration_secs - 1.2, joined.duration_secs);
+        let own = heading_deg(&walk, walk.duration_secs - 1.2, walk.duration_secs);
+        let off = (after - before - (own - before)).abs();
+        assert!(off < 20.0, "from {second_secs} s: {after} after {before} degrees");
+        let landmarks = blend::Landmarks::of(&walk);
+        let secs = |from: f64| (0..5).map(|step| from + 0.05 * f64::from(step)).collect::<Vec<f64>>();
+        let cloud = |from: f64| blend::Cloud::of(&walk, &secs(from), &landmarks);
+        let (own, other) = (cloud(place.first_secs), cloud(second_secs));
+        turned_round += i32::from(own.fit(2, &other, 2, 2).1.turn_rad.abs() > 1.5);
+    }
+    assert!(turned_round > 0, "nothing is proved where places tell the heading too");
+}
+
+#[test]
+fn a_table_without_a_hierarchy_is_moved_by_its_root_alone() {
+    let Some(flip) = clips("data/csv/humanoid3d_backflip_quat.csv").map(|clips| clips[0].clone()) else {
+        return;
+    };
+    let Some(wheel) = clips("data/csv/humanoid3d_cartwheel_quat.csv").map(|clips| clips[0].clone()) else {
+        return;
+    };
+    let wheel = fit(&wheel, &flip.skeleton).unwrap();
+    let place = JoinPlace::end_to_start(&flip, 0.3);
+    let joined = join(&flip, &wheel, place, &Mask::all(&flip.skeleton)).unwrap();
+    // On a frame of the result, where it has the second clip's turns as played.
+    let at = joined.grid.time(joined.grid.frame(place.first_secs + 1.0));
+    for joint in flip.skeleton.listed() {
+        let [own, other] = [(&joined, at), (&*wheel, at - place.first_secs)]
+            .map(|(clip, secs)| clip.rotations_at(joint, &[secs])[0]);
+        let is_root = flip.skeleton.label(joint) == "root";
+        let turn = own.turn_to(other);
+        assert!(is_root || turn < 1e-6, "{} is turned by {turn}", flip.skeleton.label(joint));
+        assert!(is_root || joined.joints[joint].translation.is_none(), "{}", flip.skeleton.label(joint));
+    }
+}
+
+#[test]
+fn a_mix_across_half_a_turn_is_told() {
+    let Some((_, walk, dance)) = pairs().into_iter().find(|(name, ..)| *name == "captures") else { return };
+    let mask = Mask::all(&walk.skeleton);
+    let half = MixAlong::constant(0.5);
+    let plain = mix(&walk, &dance, &half, &mask).unwrap();
+    let jump = blend::worst_jump(&plain, &[&walk, &dance]).unwrap();
+    // The dancer turns round, the walker does not: read off the clips' own numbers, the hips stand half a turn apart there.
+    assert_eq!(walk.skeleton.label(jump.joint), "Hips");
+    let [own, other] = [&walk, &dance].map(|clip| clip.rotations_at(jump.joint, &[jump.secs])[0]);
+    assert!(own.turn_to(other).to_degrees() > 170.0, "{}", own.turn_to(other).to_degrees());
+    assert!(jump.words(&walk.skeleton).contains("`Hips` turns by 17"), "{}", jump.words(&walk.skeleton));
+    // In step both face alike.
+    let how = MixHow { weight: half, mask, root: RootFrom::Both, holds_feet: true };
+    let in_step = mix_aligned(&walk, &dance, &align(&walk, &dance).unwrap(), &how).unwrap();
+    assert_eq!(blend::worst_jump(&in_step, &[&walk, &dance]), None);
 }
 
 #[test]
@@ -441,6 +521,11 @@ fn a_scene_keeps_a_blend() {
             root: RootFrom::First,
         },
         BlendForm::Add { weight: -1.5, reference: Reference::Mean, side: Side::Parent },
+        BlendForm::Mean {
+            weights: [2.0, 0.5],
+            more: vec![(ClipRef { source: 0, clip: 5 }, 1.25), (ClipRef { source: 0, clip: 1 }, 0.0)],
+            is_aligned: true,
+        },
     ];
     let mut document = Document::default();
     document.sources.push(SourceRef {
@@ -455,7 +540,7 @@ fn a_scene_keeps_a_blend() {
         let step = BlendPass { other, form, joints, holds_feet: id == 1 }.into();
         document.works[0].passes.push(Pass { id: PassId(id as u64), on: true, step });
     }
-    for (id, close) in [(3, None), (4, Some(Closing::Window))] {
+    for (id, close) in [(4, None), (5, Some(Closing::Window))] {
         let part_secs = close.map(|_| [0.5, 1.25]);
         let step = LoopPass { part_secs, close, rounds: 3 }.into();
         document.works[0].passes.push(Pass { id: PassId(id), on: true, step });
@@ -463,6 +548,11 @@ fn a_scene_keeps_a_blend() {
     let text = ron::to_text(Path::new("/a/night.ron"), &document, &label).unwrap();
     let back = ron::from_text(Path::new("/a/night.ron"), &text).unwrap().document;
     assert_eq!(back.works[0].passes, document.works[0].passes, "{text}");
+    // What an older program knows keeps its version.
+    assert!(text.contains("turnwright_scene: 3,"), "{text}");
+    document.works[0].passes.remove(3);
+    let text = ron::to_text(Path::new("/a/night.ron"), &document, &label).unwrap();
+    assert!(text.contains("turnwright_scene: 2,"), "{text}");
 }
 
 #[test]

@@ -6,14 +6,14 @@ use std::sync::Arc;
 
 use glam::DVec3;
 use turnwright::blend::{
-    self, GroundMove, Mask, MixAlong, MixHow, RootFrom, align, join_on_feet, mix, mix_aligned, mix_by,
-    mix_many, moved,
+    self, GroundMove, Mask, MeanHow, MixAlong, MixHow, Reference, Registration, RootFrom, Side, add, align,
+    join_on_feet, mix, mix_aligned, mix_by, mix_many, mix_many_by, moved,
 };
 use turnwright::clip::{Clip, JointTracks, VectorTrack, Worlds, resampled};
 use turnwright::retarget;
 use turnwright::rotor::{Axis, Rotor};
 use turnwright::scene::{Closing, LoopPass, NoOthers, PassKind as _};
-use turnwright::skeleton::{Skeleton, Transform};
+use turnwright::skeleton::{RestChoice, Skeleton, Transform};
 
 use crate::blend_feet::{clip, clips, pairs, part, travelling};
 use crate::support::{assert_close, largest};
@@ -194,6 +194,51 @@ fn mixes_in_step_do_not_ask_which_clip_is_the_first() {
     }
 }
 
+#[test]
+fn means_in_step_are_mixes_of_two_and_know_no_order_beyond_the_first() {
+    let (Some(walk), Some(long)) = (captured_walk(), clips("data/bvh/cmu_05_06_dance.bvh")) else { return };
+    let [dance, later] = [(0.0, 2.2), (2.0, 4.4)].map(|(from, to)| part(&long[0], from, to));
+    let [dance, later] = [dance, later].map(|clip| retarget::partner(&clip, &walk.skeleton).unwrap().clip);
+    let mask = Mask::all(&walk.skeleton);
+    let registrations = [&dance, &later].map(|clip| align(&walk, clip).unwrap());
+    let mean = |others: &[(usize, f64)], own: f64, holds_feet: bool| {
+        let clips = [&dance, &later];
+        let along: Vec<&Registration> = others.iter().map(|&(other, _)| &registrations[other]).collect();
+        let others = others.iter().map(|&(other, weight)| (&**clips[other], weight));
+        let all: Vec<(&Clip, f64)> = std::iter::once((&*walk, own)).chain(others).collect();
+        mix_many_by(&all, &MeanHow { mask: &mask, along: Some(&along), holds_feet }).unwrap()
+    };
+    let apart = |one: &Clip, other: &Clip| {
+        assert_eq!(one.grid.count(), other.grid.count());
+        let secs: Vec<f64> = one.grid.times.iter().collect();
+        let (own, their) = (one.worlds_at(&secs), other.worlds_at(&secs));
+        let all = walk.skeleton.listed().flat_map(|joint| (0..secs.len()).map(move |frame| (joint, frame)));
+        largest(all.map(|(joint, frame)| own.position(joint, frame).distance(their.position(joint, frame))))
+    };
+    // A figure is 25 to 30 units high.
+    for holds_feet in [false, true] {
+        let two = mean(&[(0, 1.0)], 3.0, holds_feet);
+        let how =
+            MixHow { weight: MixAlong::constant(0.25), mask: mask.clone(), root: RootFrom::Both, holds_feet };
+        let mixed = mix_aligned(&walk, &dance, &registrations[0], &how).unwrap();
+        let worst = apart(&two, &mixed);
+        assert!(worst < 1e-6, "{worst} from the mix of two");
+    }
+    let three = mean(&[(0, 1.0), (1, 2.0)], 3.0, false);
+    let worst = apart(&three, &mean(&[(1, 4.0), (0, 2.0)], 6.0, false));
+    assert!(worst < 1e-6, "{worst} from the other order");
+    // Its length is the mean of all, and with weight for the first alone it is the first.
+    let lengths = (3.0 * walk.duration_secs + dance.duration_secs + 2.0 * later.duration_secs) / 6.0;
+    assert!((three.duration_secs - lengths).abs() <= 1.0 / walk.grid.rate, "{}", three.duration_secs);
+    assert_eq!(mean(&[(0, 0.0), (1, 0.0)], 1.0, true), *walk);
+    // A clip with itself is itself, frame for frame.
+    let own = align(&walk, &walk).unwrap();
+    let all = [(&*walk, 1.0), (&*walk, 1.0), (&*walk, 2.0)];
+    let how = MeanHow { mask: &mask, along: Some(&[&own, &own]), holds_feet: true };
+    let worst = apart(&mix_many_by(&all, &how).unwrap(), &walk);
+    assert!(worst < 1e-9, "{worst} from itself");
+}
+
 /// The same clip in another length unit.
 fn in_unit(clip: &Clip, factor: f64) -> Clip {
     let joints = clip.skeleton.joints().iter().map(|joint| {
@@ -215,8 +260,32 @@ fn in_unit(clip: &Clip, factor: f64) -> Clip {
 }
 
 #[test]
+fn another_person_in_another_unit_makes_no_other_blend() {
+    // Two people: one's limbs are 2 % longer in the median, some much more. How large a body is must not be taken for a part of its unit.
+    let (Some(walk), Some(dance)) = (captured_walk(), clips("data/bvh/cmu_05_06_dance.bvh")) else { return };
+    let mask = Mask::all(&walk.skeleton);
+    let mixed = |second: Clip| {
+        let second = retarget::partner(&Arc::new(second), &walk.skeleton).unwrap();
+        assert!(!second.is_carried);
+        mix(&walk, &second.clip, &MixAlong::constant(0.6), &mask).unwrap()
+    };
+    let plain = mixed((*dance[0]).clone());
+    let own = worlds(&plain).1;
+    let size = largest((0..plain.grid.count()).map(|frame| own.position(body(&walk), frame).length()));
+    // Centimetres to metres, to millimetres, to inches, and between the captures' own unit and metres or centimetres.
+    for factor in [0.01, 10.0, 1.0 / 2.54, 0.0254 / 0.45, 2.54 / 0.45, 1000.0] {
+        let other = worlds(&mixed(in_unit(&dance[0], factor))).1;
+        for joint in walk.skeleton.listed() {
+            for frame in (0..plain.grid.count()).step_by(7) {
+                let place = own.position(joint, frame);
+                assert_close!(other.position(joint, frame), place, 1e-9 * size, "{factor}: {joint} {frame}");
+            }
+        }
+    }
+}
+
+#[test]
 fn another_unit_and_another_rate_make_no_other_blend() {
-    // One person's take: of two people the longer limbs of one can't be told from a unit.
     let Some(take) = clips("data/bvh/cmu_05_06_dance.bvh") else { return };
     let [first, second] = [(0.0, 2.0), (2.0, 4.2)].map(|(from, to)| part(&take[0], from, to));
     let mask = Mask::all(&first.skeleton);
@@ -284,6 +353,33 @@ fn another_rest_pose_of_the_same_body_is_seen_through() {
     let joined =
         join_on_feet(&walk, &partner.clip, blend::JoinPlace::end_to_start(&walk, 0.2), &mask).unwrap();
     assert!(joined.duration_secs > walk.duration_secs);
+}
+
+#[test]
+fn a_layer_beyond_rest_is_measured_from_the_rest_pose_that_was_chosen() {
+    let (Some(walk), Some(run)) = (clip("data/gltf/Fox.glb", "Walk"), clip("data/gltf/Fox.glb", "Run"))
+    else {
+        return;
+    };
+    // Its first frame chosen for the rest pose: beyond rest is then beyond the first frame.
+    let pose = run.local_at(0.0);
+    let skeleton = Arc::new(run.skeleton.with_rest(RestChoice::FirstFrame, pose));
+    let rested = Arc::new(Clip { skeleton, ..(*run).clone() });
+    let partner = retarget::partner(&rested, &walk.skeleton).unwrap();
+    assert!(!partner.is_carried);
+    let mask = Mask::all(&walk.skeleton);
+    let laid = |layer: &Clip, reference| add(&walk, layer, 0.8, reference, Side::Body, &mask).unwrap();
+    let (rest, first) = (laid(&partner.clip, Reference::Rest), laid(&run, Reference::First));
+    let plain = laid(&run, Reference::Rest);
+    let mut differs = false;
+    for joint in walk.skeleton.listed() {
+        for secs in [0.0, 0.2, 0.5] {
+            let at = |clip: &Clip| clip.rotations_at(joint, &[secs])[0];
+            assert_close!(at(&rest), at(&first), 1e-9, "{joint} at {secs}");
+            differs |= at(&plain).turn_to(at(&first)) > 0.1;
+        }
+    }
+    assert!(differs, "the fox's nodes stand in another pose than its run begins in");
 }
 
 /// The largest step of each joint's rate, and of the body's speed, from one frame to the next: at seams and at all other frames.

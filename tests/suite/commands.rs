@@ -922,7 +922,9 @@ fn a_blend_of_many_takes_a_weight_for_each_and_a_mix_the_way_that_was_asked_for(
         ("--mean 1,-1,1", "of at least 0, found -1"),
         ("--mean 1,1,1 --root a", "--root"),
         ("--mean 1,1,1 --mix 0.5", "--mix"),
-        ("--mean 1,1,1 --align", "--align"),
+        ("--join -0.5 --align", "--align"),
+        ("--mean 1,1,1 --soft 2", "--limbs"),
+        ("--mean 1,1,1 --joints Chest=2", "from 0 to 1 for a joint of a mask, found 2"),
     ] {
         let error = bench.run(&format!("{many} {arguments} -o no.bvh")).expect(2);
         assert!(error.stderr.contains(words), "{arguments}: {}", error.stderr);
@@ -935,6 +937,24 @@ fn a_blend_of_many_takes_a_weight_for_each_and_a_mix_the_way_that_was_asked_for(
     };
     bench.copy(&walk, "walk.bvh");
     bench.copy(&dance, "dance.bvh");
+    // Frame by frame they pass half a turn of each other, and the program says where; a mean in step has all facing alike.
+    let run = bench.run("blend walk.bvh dance.bvh --mean 1,1 -o plain.bvh").expect(0);
+    assert!(run.stderr.contains("`Hips` turns by 17") && run.stderr.contains("--align"), "{}", run.stderr);
+    bench.run("convert dance.bvh --from 1 --to 4 -o later.bvh").expect(0);
+    let run = bench.run("blend walk.bvh dance.bvh later.bvh --mean 1,1,1 --align -o step.bvh").expect(0);
+    assert!(!run.stderr.contains("half a turn") && run.stderr.contains("became 4.4"), "{}", run.stderr);
+    // Masks: a limb with a soft edge, and shares of single joints.
+    let soft = |more: &str| {
+        bench.run(&format!("blend walk.bvh dance.bvh --mix 0.8 {more} -o soft.bvh --force")).expect(0);
+        bench.read("soft.bvh")
+    };
+    let by_hand =
+        soft("--joints LeftShoulder=0.5,LeftArm,LeftForeArm,LeftHand,LThumb,LeftFingerBase,LeftHandIndex1");
+    assert_eq!(soft("--limbs LeftArm --soft 1"), by_hand);
+    assert_eq!(soft("--limbs LeftArm --joints LeftShoulder=0.5"), by_hand);
+    assert_ne!(soft("--limbs LeftArm=0.5 --soft 1"), by_hand);
+    let error = bench.run("blend walk.bvh dance.bvh --mix 0.8 --limbs left_arm -o no.bvh").expect(2);
+    assert!(error.stderr.contains("such as `LeftArm`, found `left_arm`"), "{}", error.stderr);
     let first_row = |name: &str| -> Vec<f64> {
         let text = bench.text(name);
         let (_, motion) = text.split_once("Frame Time:").unwrap();

@@ -10,7 +10,8 @@ use turnwright::app::commands::{Action, BlendCommand, Command};
 use turnwright::app::view_models::BlendKind;
 use turnwright::blend::{JoinPlace, RootFrom};
 use turnwright::exchange::ClipAddress;
-use turnwright::scene::{BlendForm, BlendPass, ClipRef, LoopPass, PassStep};
+use turnwright::scene::{BlendForm, BlendPass, ClipRef, Edit, LoopPass, PassStep};
+use turnwright::skeleton::RestChoice;
 
 use crate::gui_harness::Bench;
 use crate::support::shared;
@@ -49,6 +50,11 @@ fn open(path: PathBuf, clip: Option<&str>) -> Bench<'static> {
 
 fn fox() -> Option<Bench<'static>> {
     Some(open(shared("data/gltf/Fox.glb")?, Some("Walk")))
+}
+
+fn clip_joint(bench: &Bench<'_>, label: &str) -> usize {
+    let clip = bench.window().bench().source().expect("a clip");
+    clip.skeleton.find(label).expect("a joint with that label")
 }
 
 const RUN: ClipRef = ClipRef { source: 0, clip: 2 };
@@ -91,6 +97,18 @@ fn a_clip_is_joined_from_the_menu_and_its_place_is_dragged_and_clicked() {
     let expected = 0.5 * (run - clicked.overlap_secs);
     assert!((clicked.second_secs - expected).abs() < 0.06, "{clicked:?}, expected {expected}");
     assert_eq!(bench.steps(), 3);
+
+    // The curves show the result as far as it goes, and the source as far as that does.
+    bench.ask(Command::ChooseJoint(Some(clip_joint(&bench, "b_Neck_04"))));
+    let curves = bench.window().bench().curve_sets().remove(0);
+    let end = curves.times.time(curves.times.len() - 1);
+    assert!((end - bench.length()).abs() < 0.05, "{end} of {}", bench.length());
+    let line = &curves.lines[0];
+    let number =
+        |row: &turnwright::app::view_models::Pyramid, secs| curves.times.value(row.values(), secs).unwrap();
+    let after = line.after.as_ref().unwrap();
+    assert!(number(after, end).is_finite() && number(&line.before, 0.9 * walk).is_finite());
+    assert!(number(&line.before, walk + 0.1).is_nan());
 
     // The best place is proposed and taken.
     bench.click("Best place 1");
@@ -278,4 +296,84 @@ fn the_lane_is_made_higher_by_its_divider() {
     bench.run();
     assert!((line(&bench).y - from.y - 14.0).abs() < 2.0, "{from:?} {:?}", line(&bench));
     assert_eq!(bench.steps(), 1, "areas are no work on the clip");
+}
+
+#[test]
+fn a_mean_takes_further_clips_with_weights_of_their_own() {
+    let Some(mut bench) = fox() else { return };
+    bench.ask(Command::Blend(BlendCommand::Add(RUN, BlendKind::Mean)));
+    let mean = |bench: &Bench<'_>| match bench.blend().form {
+        BlendForm::Mean { weights, more, is_aligned } => (weights, more, is_aligned),
+        other => panic!("expected a mean, found {other:?}"),
+    };
+    assert_eq!(mean(&bench), ([1.0, 1.0], vec![], false));
+    // In the lane each clip has a bar and its weight beside it, to drag.
+    let from = bench.place("Weight of B in the mean");
+    let previews = bench.drag(&[from, from + egui::vec2(50.0, 0.0)], Modifiers::NONE);
+    assert!(previews >= 2, "{previews} frames showed it while it was dragged");
+    let ([own, other], ..) = mean(&bench);
+    assert!(own == 1.0 && other > 1.2, "{own} {other}");
+    assert_eq!(bench.steps(), 2, "a drag is one step");
+
+    // One clip more, from those that are open.
+    let combo = |bench: &Bench<'_>| {
+        let combo = bench.0.get_by_role_and_label(Role::ComboBox, "Add a clip to the mean");
+        combo.scroll_to_me();
+        combo.rect().center()
+    };
+    combo(&bench);
+    bench.run();
+    let at = combo(&bench);
+    bench.drag(&[at], Modifiers::NONE);
+    bench.0.get_all_by_label("Survey").last().unwrap().click();
+    bench.run();
+    let survey = ClipRef { source: 0, clip: 0 };
+    assert_eq!(mean(&bench).1, [(survey, 1.0)]);
+    bench.click("Equal weights");
+    assert_eq!(mean(&bench).0, [1.0, 1.0]);
+    let clips: Vec<_> = [1, 2, 0]
+        .map(|clip| bench.window().bench().project.as_ref().unwrap().source_clip(clip).unwrap().clone())
+        .into();
+    let mask = turnwright::blend::Mask::all(&clips[0].skeleton);
+    let all: Vec<_> = clips.iter().map(|clip| (&**clip, 1.0)).collect();
+    bench.click("Keep planted feet");
+    let expected = turnwright::blend::mix_many(&all, &mask).unwrap();
+    assert_eq!(**bench.window().bench().result().unwrap(), expected);
+    // In step all three are as long as their mean, and the three figures have their letters.
+    bench.click("In step");
+    let lengths: f64 = clips.iter().map(|clip| clip.duration_secs).sum::<f64>() / 3.0;
+    assert!((bench.length() - lengths).abs() <= 1.0 / 24.0, "{} of {lengths}", bench.length());
+    let facts = bench.window().bench().blend_facts().unwrap().clone();
+    let result = bench.window().bench().result().unwrap().clone();
+    let figures = facts.figures(&bench.blend().form, &result, 0.5 * lengths);
+    assert_eq!(figures.iter().map(|figure| figure.letter).collect::<String>(), "ABC");
+    // The second goes: the further one takes its place.
+    bench.click("Take clip B out of the mean");
+    assert_eq!((bench.blend().other, mean(&bench).1), (survey, vec![]));
+    while bench.steps() > 0 {
+        bench.undo();
+    }
+    assert!(bench.passes().is_empty());
+}
+
+#[test]
+fn another_rest_pose_of_the_clip_that_is_blended_in_is_followed() {
+    let Some(path) = shared("data/gltf/Fox.glb") else { return };
+    let folder = tempfile::tempdir().unwrap();
+    let other = folder.path().join("other.glb");
+    std::fs::copy(&path, &other).unwrap();
+    let mut bench = open(path, Some("Walk"));
+    bench.ask(Command::Blend(BlendCommand::AskForFile(None)));
+    bench.ask(Command::Blend(BlendCommand::OpenFile(other)));
+    let run = ClipRef { source: 1, clip: 2 };
+    bench.ask(Command::Blend(BlendCommand::Add(run, BlendKind::Add)));
+    bench.click("rest pose");
+    let result = |bench: &Bench<'_>| bench.window().bench().result().unwrap().clone();
+    let before = result(&bench);
+    // A layer beyond rest: with another rest pose of the layer's file it is another layer.
+    bench.ask(Command::Edit(Edit::ChooseRest { source: 1, rest: Some(RestChoice::FirstFrame) }));
+    let after = result(&bench);
+    assert_ne!(before, after);
+    bench.undo();
+    assert_eq!(before, result(&bench));
 }

@@ -12,6 +12,8 @@ pub enum BlendCommand {
     Add(ClipRef, BlendKind),
     /// Ask for a file to take the second clip from: for this pass, or for a new one.
     AskForFile(Option<PassId>),
+    /// Ask for a file to take a clip of this pass's mean from: the second (0), one of the further ones, or one more.
+    AskForMember(PassId, usize),
     /// Open it beside those that are open.
     OpenFile(PathBuf),
     /// Show this pass in the lane.

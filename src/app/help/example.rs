@@ -63,7 +63,7 @@ pub(super) fn pass_words(subject: Subject) -> &'static str {
         Subject::Resample => ResamplePass { rate: 0.0 }.explanation(),
         Subject::Limits => LimitsPass::new(Arc::new(limits())).explanation(),
         Subject::Blend => {
-            "Joins another clip behind this one, goes between both by a weight, or lays its difference over this one. Steps \
+            "Joins another clip behind this one, goes between both by a weight, lays its difference over this one, or takes the mean of several. Steps \
              can be brought into time with each other."
         }
         Subject::Loop => LoopPass::default().explanation(),

@@ -52,12 +52,8 @@ impl Window {
     pub(super) fn run_blend(&mut self, command: BlendCommand) {
         match command {
             BlendCommand::Add(other, kind) => self.add_blend(other, kind),
-            BlendCommand::AskForFile(pass) => {
-                let folder = self.usual_folder();
-                self.bench.session.blend.file_for = pass;
-                self.dialog = Some(Dialog::SecondFile);
-                self.form = Form::with_path(folder);
-            }
+            BlendCommand::AskForFile(pass) => self.ask_for_clip(pass, 0),
+            BlendCommand::AskForMember(pass, place) => self.ask_for_clip(Some(pass), place),
             BlendCommand::OpenFile(path) => self.open_second(path),
             BlendCommand::Show(pass) => {
                 self.bench.session.blend.shown = Some(pass);
@@ -66,6 +62,14 @@ impl Window {
             BlendCommand::FindLoop(pass) => self.find_loop(pass),
             BlendCommand::SetSoft(soft) => self.bench.session.blend.soft = soft,
         }
+    }
+
+    fn ask_for_clip(&mut self, pass: Option<PassId>, place: usize) {
+        let folder = self.usual_folder();
+        self.bench.session.blend.file_for = pass;
+        self.bench.session.blend.file_place = place;
+        self.dialog = Some(Dialog::SecondFile);
+        self.form = Form::with_path(folder);
     }
 
     fn add_blend(&mut self, other: ClipRef, kind: BlendKind) {
@@ -118,7 +122,16 @@ impl Window {
         let own = waiting.and_then(|id| Some((id, self.bench.work()?.pass(id)?.step.clone())));
         if let Some((pass, PassStep::Blend(blend))) = own {
             self.dialog = None;
-            let step = crate::scene::BlendPass { other, ..blend }.into();
+            let place = std::mem::take(&mut self.bench.session.blend.file_place);
+            let mut blend = blend;
+            match (&mut blend.form, place.checked_sub(1)) {
+                (BlendForm::Mean { more, .. }, Some(further)) => match more.get_mut(further) {
+                    Some((clip, _)) => *clip = other,
+                    None => more.push((other, 1.0)),
+                },
+                _ => blend.other = other,
+            }
+            let step = blend.into();
             self.edit(&Edit::ChangePass { work: self.bench.session.work, pass, step });
         } else {
             self.show_dialog(Dialog::Blend);
@@ -179,7 +192,7 @@ impl Window {
             return;
         };
         let (serial, work) = (project.serial, self.bench.session.work);
-        let key = BlendKey { first, behind: project.passes_behind(work), pass };
+        let key = BlendKey { first, behind: project.works_behind(work), pass };
         if self.bench.blend.as_ref().is_some_and(|known| known.key == key) {
             return;
         }
@@ -192,9 +205,13 @@ impl Window {
             self.bench.blend.as_ref().and_then(|known| known.facts.as_ref().ok().cloned());
         let library = project.library();
         self.jobs.submit(Slot::Blend, move |_| {
-            let facts = match library.clip(key.pass.other) {
-                Some(given) => blend_facts(&key.first, &given, &key.pass, known.as_deref()).map(Arc::new),
-                None => Err("the second clip is not open".to_owned()),
+            let more = key.pass.form.more().iter().map(|&(clip, _)| library.clip(clip));
+            let facts = match (library.clip(key.pass.other), more.collect::<Option<Vec<_>>>()) {
+                (Some(given), Some(more)) => {
+                    blend_facts(&key.first, &given, &more, &key.pass, known.as_deref()).map(Arc::new)
+                }
+                (None, _) => Err("the second clip is not open".to_owned()),
+                (_, None) => Err("one of the further clips is not open".to_owned()),
             };
             Some(Answer::Blend(BlendAnswer::Facts { serial, work: Box::new(BlendWork { key, facts }) }))
         });

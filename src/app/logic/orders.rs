@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use super::super::bench::{Evaluated, FromClips, Searched};
+use super::super::bench::{Evaluated, FromClips, Searched, WorkBehind};
 use super::super::blend_state::BlendKey;
 use super::super::carry_state::CarryKey;
 use super::super::jobs::Slot;
@@ -15,16 +15,13 @@ use crate::scene::Pass;
 use crate::skeleton::Skeleton;
 use crate::skeleton::roles::Roles;
 
-/// Passes by work.
-type Behind = Vec<(usize, Vec<Pass>)>;
-
 /// The last order of each purpose, so that none is given twice.
 #[derive(Debug, Default)]
 pub(crate) struct Asked {
     /// Project, work and what is looked for.
     pub survey: Option<(u64, usize, Searched)>,
-    /// Project, work, passes, and those of other clips that they need.
-    pub evaluation: Option<(u64, usize, Vec<Pass>, Behind)>,
+    /// Project, work, passes, and the other clips that they need.
+    pub evaluation: Option<(u64, usize, Vec<Pass>, Vec<WorkBehind>)>,
     /// Clips and colours.
     pub heat: Option<FromClips<HeatWish, ()>>,
     /// Clips, joints and view.
@@ -99,8 +96,8 @@ impl Window {
         let (Some(findings), Some(project)) = (self.bench.findings(), &self.bench.project) else { return };
         let (serial, work) = (project.serial, self.bench.session.work);
         let known = findings.evaluated.as_ref();
-        let behind = project.passes_behind(work);
-        // Another rest pose, or the file found again, is another source clip under the same passes.
+        let behind = project.works_behind(work);
+        // Another rest pose, or the file found again, is another source clip under the same passes: its own, or that of a clip behind.
         let is_unchanged = |passes: &[Pass]| {
             known.is_some_and(|known| {
                 Arc::ptr_eq(&known.evaluation.source, source)

@@ -8,6 +8,7 @@ use super::super::theme::Look;
 use super::super::view_models::{BlendKind, held_place, knots_of, weight_at, with_knot, with_knot_at};
 use super::Scope;
 use super::blend_lane::Lane;
+use super::blend_mean::mean_form_ui;
 use crate::blend::{JoinPlace, Mask, Reference, RootFrom, Side};
 use crate::scene::{BlendForm, BlendPass, ClipRef, Closing, Edit, LoopPass, PassId, PassStep};
 
@@ -24,7 +25,7 @@ pub(super) fn clip_title(scope: &Scope<'_>, clip: ClipRef) -> String {
     }
 }
 
-/// One of the three forms, underlined where it is the one. Gives whether it was clicked.
+/// One of the forms, underlined where it is the one. Gives whether it was clicked.
 pub(super) fn kind_ui(ui: &mut Ui, kind: BlendKind, is_on: bool, look: &Look) -> bool {
     let font = egui::TextStyle::Button.resolve(ui.style());
     let color = if is_on { look.text } else { look.faint };
@@ -59,7 +60,7 @@ pub(crate) fn blend_form_ui(ui: &mut Ui, id: PassId, step: &PassStep, scope: &mu
 }
 
 /// Shows a step while its widget is dragged, and keeps it when it is let go or typed.
-fn settle(response: &Response, id: PassId, step: PassStep, scope: &mut Scope<'_>) {
+pub(super) fn settle(response: &Response, id: PassId, step: PassStep, scope: &mut Scope<'_>) {
     if response.drag_stopped() || (response.changed() && !response.dragged()) {
         keep(id, step, scope);
     } else if response.changed() {
@@ -67,12 +68,12 @@ fn settle(response: &Response, id: PassId, step: PassStep, scope: &mut Scope<'_>
     }
 }
 
-fn keep(id: PassId, step: PassStep, scope: &mut Scope<'_>) {
+pub(super) fn keep(id: PassId, step: PassStep, scope: &mut Scope<'_>) {
     let work = scope.bench.session.work;
     scope.out.push(Command::Edit(Edit::ChangePass { work, pass: id, step }));
 }
 
-fn named(response: &Response, role: Role, words: &str) {
+pub(super) fn named(response: &Response, role: Role, words: &str) {
     response.widget_info(|| WidgetInfo::labeled(role, true, words));
 }
 
@@ -97,8 +98,10 @@ fn blend_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
     if lane.is_none() && ui.button("Show in the lane").clicked() {
         scope.out.push(Command::Blend(BlendCommand::Show(id)));
     }
-    other_ui(ui, id, pass, scope);
     let kind = BlendKind::of(&pass.form);
+    if kind != BlendKind::Mean {
+        other_ui(ui, id, pass, scope);
+    }
     let (lengths, rate) = lane.as_ref().map_or(([1.0, 1.0], 30.0), |lane| (lane.lengths, lane.rate));
     ui.horizontal(|ui| {
         for other in BlendKind::ALL {
@@ -149,6 +152,7 @@ fn blend_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
                 keep(id, BlendPass { form, ..pass.clone() }.into(), scope);
             }
         }
+        BlendForm::Mean { .. } => mean_form_ui(ui, id, pass, scope),
     }
     if kind != BlendKind::Add {
         let mut holds = pass.holds_feet;
@@ -163,39 +167,61 @@ fn blend_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
     mask_ui(ui, id, pass, scope);
 }
 
+/// What was chosen in a box of clips.
+pub(super) struct ClipChoice {
+    /// The clip: the one that it was, or another.
+    pub(super) clip: ClipRef,
+    /// It is to come from a file that is not open yet.
+    pub(super) wants_file: bool,
+}
+
+/// A box with all clips but the one on show.
+pub(super) fn clip_choice_ui(
+    ui: &mut Ui,
+    salt: impl egui::AsIdSalt,
+    words: &str,
+    clip: ClipRef,
+    width: f32,
+    scope: &Scope<'_>,
+) -> ClipChoice {
+    let mut choice = ClipChoice { clip, wants_file: false };
+    let Some(project) = &scope.bench.project else { return choice };
+    let document = std::sync::Arc::clone(project.document());
+    let combo = ComboBox::from_id_salt(salt).selected_text(clip_title(scope, clip)).width(width).truncate();
+    let response = combo
+        .show_ui(ui, |ui| {
+            for (index, work) in document.works.iter().enumerate() {
+                let clip = ClipRef { source: work.source, clip: work.clip };
+                if index != scope.bench.session.work {
+                    ui.selectable_value(&mut choice.clip, clip, clip_title(scope, clip));
+                }
+            }
+            choice.wants_file = ui.button("Open a file…").clicked();
+        })
+        .response;
+    named(&response, Role::ComboBox, words);
+    choice
+}
+
 /// Which clip is the second.
 fn other_ui(ui: &mut Ui, id: PassId, pass: &BlendPass, scope: &mut Scope<'_>) {
-    let Some(project) = &scope.bench.project else { return };
-    let document = std::sync::Arc::clone(project.document());
-    let mut chosen = pass.other;
-    let mut wants_file = false;
-    ui.horizontal(|ui| {
+    let choice = ui.horizontal(|ui| {
         ui.label("with");
         let width = (ui.available_width() - 8.0).clamp(80.0, 260.0);
-        let combo = ComboBox::from_id_salt(("second clip", id.0))
-            .selected_text(clip_title(scope, pass.other))
-            .width(width)
-            .truncate();
-        let response = combo
-            .show_ui(ui, |ui| {
-                for (index, work) in document.works.iter().enumerate() {
-                    let clip = ClipRef { source: work.source, clip: work.clip };
-                    if index != scope.bench.session.work {
-                        ui.selectable_value(&mut chosen, clip, clip_title(scope, clip));
-                    }
-                }
-                wants_file = ui.button("Open a file…").clicked();
-            })
-            .response;
-        named(&response, Role::ComboBox, "Second clip");
+        clip_choice_ui(ui, ("second clip", id.0), "Second clip", pass.other, width, scope)
     });
+    let ClipChoice { clip: chosen, wants_file } = choice.inner;
     if wants_file {
         scope.out.push(Command::Blend(BlendCommand::AskForFile(Some(id))));
     } else if chosen != pass.other {
         let mut step = BlendPass { other: chosen, ..pass.clone() };
         if let (BlendForm::Join(place), Some(lane)) = (&pass.form, Lane::of(scope)) {
             // The other clip may be too short for the place.
-            let second = project.document().work_on(chosen).and_then(|work| project.result_clip(work));
+            let second = scope
+                .bench
+                .project
+                .as_ref()
+                .and_then(|project| project.result_clip(project.document().work_on(chosen)?));
             if let Some(second) = second {
                 step.form = BlendForm::Join(held_place(*place, [lane.lengths[0], second.duration_secs]));
             }

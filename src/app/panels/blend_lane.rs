@@ -1,4 +1,4 @@
-//! The blend lane: two clips over the result's time, and how much of the second is taken when.
+//! The blend lane: the clips over the result's time, and how much of the second is taken when.
 
 use std::sync::Arc;
 
@@ -16,6 +16,7 @@ use super::super::view_models::{
 use super::super::widgets::{TimeAxis, focus_ring, hint, playhead, read_out, scrub_and_zoom, segment, strip};
 use super::Scope;
 use super::blend_form::{clip_title, kind_ui};
+use super::blend_mean::mean_lane_ui;
 use super::blend_picture::picture_ui;
 use crate::blend::JoinPlace;
 use crate::clip::Clip;
@@ -138,8 +139,13 @@ pub(crate) fn blend_lane_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let rows = Rows::of(area);
     let bars = lane_bars(&lane.pass.form, lane.lengths, clip.duration_secs);
     let painter = ui.painter_at(over_time.expand2(vec2(PIP, 0.0)));
-    draw_bars(&painter, &lane, &bars, &rows, &axis, scope);
-    draw_weights(&painter, &lane, &rows, &axis, &scope.look);
+    let is_mean = kind == BlendKind::Mean;
+    if is_mean {
+        mean_lane_ui(ui, &lane, &bars, area, &axis, &painter, scope);
+    } else {
+        draw_bars(&painter, &lane, &bars, &rows, &axis, scope);
+        draw_weights(&painter, &lane, &rows, &axis, &scope.look);
+    }
     let new_knot = ground.double_clicked() && matches!(lane.pass.form, BlendForm::Mix { .. });
     if new_knot && let Some(pointer) = ground.interact_pointer_pos() {
         let secs = lane.first_secs(axis.time(pointer.x)).clamp(0.0, lane.lengths[0]);
@@ -151,13 +157,14 @@ pub(crate) fn blend_lane_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     match &lane.pass.form {
         BlendForm::Join(place) => join_handles(ui, &lane, *place, &bars, &rows, &axis, scope),
         BlendForm::Mix { .. } | BlendForm::Add { .. } => knots_ui(ui, &lane, &rows, &axis, &painter, scope),
+        BlendForm::Mean { .. } => {}
     }
     playhead(&painter, &scope.look, &axis, scope.bench.session.playback.playhead_secs, area.y_range());
     let gutter = Rect::from_min_max(area.min, pos2(axis.span.min, area.bottom()));
-    if matches!(lane.pass.form, BlendForm::Join(_)) {
-        picture_ui(ui, gutter.shrink(INSET * 0.5), &lane, scope);
-    } else {
-        scale_ui(ui.painter(), gutter, &lane, &rows, &scope.look);
+    match kind {
+        BlendKind::Join => picture_ui(ui, gutter.shrink(INSET * 0.5), &lane, scope),
+        BlendKind::Mix | BlendKind::Add => scale_ui(ui.painter(), gutter, &lane, &rows, &scope.look),
+        BlendKind::Mean => {}
     }
     hovered(ui, &ground, area, &lane, &axis, &clip, scope);
     ui.allocate_rect(area, Sense::hover());
@@ -197,7 +204,7 @@ impl Rows {
         let share = ((weight - least) / (most - least)) as f32;
         match form {
             BlendForm::Add { .. } => self.weights.max - share * self.weights.span(),
-            BlendForm::Join(_) | BlendForm::Mix { .. } => self.weights.min + share * self.weights.span(),
+            _ => self.weights.min + share * self.weights.span(),
         }
     }
 
@@ -206,7 +213,7 @@ impl Rows {
         let share = f64::from((y - self.weights.min) / self.weights.span().max(1.0));
         match form {
             BlendForm::Add { .. } => most - share * (most - least),
-            BlendForm::Join(_) | BlendForm::Mix { .. } => least + share * (most - least),
+            _ => least + share * (most - least),
         }
     }
 }
@@ -239,25 +246,38 @@ fn draw_bars(
     let carried = lane.facts.as_ref().is_some_and(|facts| facts.is_carried);
     let second = clip_title(scope, lane.pass.other) + if carried { ", carried over" } else { "" };
     for (letter, name, secs, y, fill) in [
-        ("A", first, bars.first, rows.first, look.before),
-        ("B", second, bars.second, rows.second, look.after),
+        ('A', first, bars.first, rows.first, look.before),
+        ('B', second, bars.second, rows.second, look.after),
     ] {
-        let bar = bar_rect(secs, y, axis);
-        painter.rect(bar, 3.0, fill.gamma_multiply(0.30), Stroke::new(1.0, fill), StrokeKind::Inside);
-        let visible = bar.intersect(painter.clip_rect()).shrink2(vec2(6.0, 0.0));
-        if visible.width() < 14.0 {
-            continue;
-        }
-        let mut job = egui::text::LayoutJob::simple_singleline(
-            format!("{letter}  {name}"),
-            FontId::proportional(12.5),
-            look.text,
-        );
-        job.wrap = egui::text::TextWrapping::truncate_at_width(visible.width());
-        let galley = painter.layout_job(job);
-        let at = pos2(visible.left(), visible.center().y - galley.size().y / 2.0);
-        painter.galley(at, galley, look.text);
+        clip_bar(painter, (letter, &name), secs, y, fill, axis, look);
     }
+}
+
+/// The bar of a clip with its letter and name, as far as there is room for them.
+pub(super) fn clip_bar(
+    painter: &Painter,
+    (letter, name): (char, &str),
+    secs: [f64; 2],
+    y: Rangef,
+    fill: egui::Color32,
+    axis: &TimeAxis,
+    look: &Look,
+) {
+    let bar = bar_rect(secs, y, axis);
+    painter.rect(bar, 3.0, fill.gamma_multiply(0.30), Stroke::new(1.0, fill), StrokeKind::Inside);
+    let visible = bar.intersect(painter.clip_rect()).shrink2(vec2(6.0, 0.0));
+    if visible.width() < 14.0 {
+        return;
+    }
+    let mut job = egui::text::LayoutJob::simple_singleline(
+        format!("{letter}  {name}"),
+        FontId::proportional(12.5),
+        look.text,
+    );
+    job.wrap = egui::text::TextWrapping::truncate_at_width(visible.width());
+    let galley = painter.layout_job(job);
+    let at = pos2(visible.left(), visible.center().y - galley.size().y / 2.0);
+    painter.galley(at, galley, look.text);
 }
 
 /// The curve of weights, as it is at every other pixel.
@@ -500,14 +520,15 @@ fn hovered(
     let secs = axis.time(pointer.x);
     let frame = clip.grid.frame(secs);
     let weight = weight_at(&lane.pass.form, lane.first_secs(secs));
-    let lines = [
-        (format!("{} frame {frame}", seconds(secs)), scope.look.faint),
-        (format!("share of B {:.0} %", 100.0 * weight), scope.look.text),
-    ];
+    let share = (format!("share of B {:.0} %", 100.0 * weight), scope.look.text);
+    let mut lines = vec![(format!("{} frame {frame}", seconds(secs)), scope.look.faint)];
+    if !matches!(lane.pass.form, BlendForm::Mean { .. }) {
+        lines.push(share);
+    }
     read_out(ui.painter(), &scope.look, pointer, area, &lines);
 }
 
-/// The two clips of the blend at the time that is shown, for the skeleton view.
+/// The clips of the blend at the time that is shown, for the skeleton view.
 pub(crate) fn blend_figures(scope: &Scope<'_>, result: &Clip) -> Vec<FaintFigure> {
     let blend = &scope.bench.session.blend;
     if !blend.shows_clips || !blend.shows_lane {
@@ -521,11 +542,5 @@ pub(crate) fn blend_figures(scope: &Scope<'_>, result: &Clip) -> Vec<FaintFigure
         return Vec::new();
     }
     let secs = scope.bench.session.playback.playhead_secs;
-    let poses = facts.poses(&pass.form, result, secs);
-    let clips = [(&facts.first, 'A'), (&facts.second, 'B')];
-    let shown = clips.into_iter().zip(poses).filter_map(|((clip, letter), pose)| {
-        let (time_secs, place) = pose?;
-        Some(FaintFigure { clip: Arc::clone(clip), time_secs, place, letter })
-    });
-    shown.collect()
+    facts.figures(&pass.form, result, secs)
 }

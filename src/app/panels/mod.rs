@@ -3,6 +3,7 @@
 mod areas;
 mod blend_form;
 mod blend_lane;
+mod blend_mean;
 mod blend_picture;
 mod carry;
 mod change_plot;

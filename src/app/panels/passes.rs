@@ -7,15 +7,22 @@ use super::super::theme::{INSET, Look};
 use super::super::view_models::{PassRow, pass_rows};
 use super::super::widgets::{Icon, focus_ring, hint, paint_icon, strip};
 use super::Scope;
+use super::blend_form::clip_title;
 use super::pass_forms::form_ui;
-use crate::scene::Edit;
+use crate::scene::{Edit, PassStep};
 
 /// The panel.
 pub(crate) fn passes_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let look = scope.look;
     let rows = scope.bench.work().map(|work| {
         let evaluated = scope.bench.findings().and_then(|findings| findings.evaluated.as_ref());
-        pass_rows(work, evaluated.map(|evaluated| &*evaluated.evaluation))
+        let mut rows = pass_rows(work, evaluated.map(|evaluated| &*evaluated.evaluation));
+        for (row, pass) in rows.iter_mut().zip(&work.passes) {
+            if let PassStep::Blend(blend) = &pass.step {
+                row.title = blend.title_with(&clip_title(scope, blend.other));
+            }
+        }
+        rows
     });
     let rows = rows.unwrap_or_default();
     strip(ui, "Passes", |ui| add_ui(ui, scope));

@@ -3,9 +3,8 @@
 
 use std::sync::Arc;
 
-use crate::blend::{
-    self, Cloud, DistancePicture, GroundMove, JoinPlace, Landmarks, MixAlong, Registration, RootFrom, Stop,
-};
+use super::FaintFigure;
+use crate::blend::{self, DistancePicture, GroundMove, JoinPlace, MixAlong, Registration, RootFrom, Stop};
 use crate::clip::Clip;
 use crate::retarget;
 use crate::scene::{BlendForm, BlendPass, ClipRef};
@@ -15,7 +14,7 @@ const PICTURE_CELLS: usize = 96;
 /// Places that are proposed.
 const PROPOSED: usize = 3;
 
-/// The three forms without their parameters.
+/// The four forms without their parameters.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum BlendKind {
     /// One after the other.
@@ -24,11 +23,13 @@ pub enum BlendKind {
     Mix,
     /// A layer on top.
     Add,
+    /// The mean of several.
+    Mean,
 }
 
 impl BlendKind {
     /// All of them.
-    pub const ALL: [Self; 3] = [Self::Join, Self::Mix, Self::Add];
+    pub const ALL: [Self; 4] = [Self::Join, Self::Mix, Self::Add, Self::Mean];
 
     /// Of a form.
     pub const fn of(form: &BlendForm) -> Self {
@@ -36,6 +37,7 @@ impl BlendKind {
             BlendForm::Join(_) => Self::Join,
             BlendForm::Mix { .. } => Self::Mix,
             BlendForm::Add { .. } => Self::Add,
+            BlendForm::Mean { .. } => Self::Mean,
         }
     }
 
@@ -45,6 +47,7 @@ impl BlendKind {
             Self::Join => "Join",
             Self::Mix => "Mix",
             Self::Add => "Add",
+            Self::Mean => "Mean",
         }
     }
 
@@ -54,6 +57,7 @@ impl BlendKind {
             Self::Join => "The second clip follows the first, overlapping it",
             Self::Mix => "Between both clips by a weight, or by a curve of weights over time",
             Self::Add => "What the second clip does beyond its reference, laid over the first",
+            Self::Mean => "The mean of two clips or more, each by its weight",
         }
     }
 
@@ -72,6 +76,7 @@ impl BlendKind {
             Self::Add => {
                 BlendForm::Add { weight: 1.0, reference: blend::Reference::First, side: blend::Side::Body }
             }
+            Self::Mean => BlendForm::Mean { weights: [1.0; 2], more: Vec::new(), is_aligned: false },
         }
     }
 }
@@ -100,26 +105,56 @@ pub struct BlendFacts {
     pub ground: GroundMove,
     /// Which times belong together; of a mix in step.
     along: Option<Arc<Registration>>,
-    /// Where each frame of a mix in step comes from.
+    /// Where each frame of a mix or mean in step comes from.
+    pub stops: Option<Vec<Stop>>,
+    /// The further clips of a mean.
+    pub more: Vec<Further>,
+}
+
+/// A clip of a mean beyond the first two.
+#[derive(Clone, Debug)]
+pub struct Further {
+    /// As it was given.
+    given: Arc<Clip>,
+    /// On the first one's skeleton.
+    pub clip: Arc<Clip>,
+    /// It was carried over from another body.
+    pub is_carried: bool,
+    /// Which of its times belong together with the first one's; of a mean in step.
+    along: Option<Arc<Registration>>,
+    /// Where it is at each frame of a mean in step.
     pub stops: Option<Vec<Stop>>,
 }
 
-/// Works out what the lane shows. What an earlier answer on the same clips has is taken over.
+/// Works out what the lane shows of the clips given: the other one, and the further ones of a mean. What an earlier answer on the same clips
+/// has is taken over.
 ///
 /// # Errors
-/// Why the two can't be blended.
+/// Why they can't be blended.
 pub fn blend_facts(
     first: &Arc<Clip>,
     given: &Arc<Clip>,
+    more: &[Arc<Clip>],
     pass: &BlendPass,
     known: Option<&BlendFacts>,
 ) -> Result<BlendFacts, String> {
-    let known = known.filter(|known| Arc::ptr_eq(&known.first, first) && Arc::ptr_eq(&known.given, given));
-    let (second, is_carried) = if let Some(known) = known {
-        (Arc::clone(&known.second), known.is_carried)
-    } else {
+    let of_first = known.filter(|known| Arc::ptr_eq(&known.first, first));
+    let known = of_first.filter(|known| Arc::ptr_eq(&known.given, given));
+    let carried = |given: &Arc<Clip>| {
         let partner = retarget::partner(given, &first.skeleton).map_err(|error| error.to_string())?;
-        (partner.clip, partner.is_carried)
+        Ok::<_, String>((partner.clip, partner.is_carried))
+    };
+    let (second, is_carried) = match known {
+        Some(known) => (Arc::clone(&known.second), known.is_carried),
+        None => carried(given)?,
+    };
+    let further = |given: &Arc<Clip>| {
+        let of = |known: &&Further| Arc::ptr_eq(&known.given, given);
+        if let Some(known) = of_first.and_then(|known| known.more.iter().find(of)) {
+            return Ok(known.clone());
+        }
+        let (clip, is_carried) = carried(given)?;
+        Ok::<_, String>(Further { given: Arc::clone(given), clip, is_carried, along: None, stops: None })
     };
     let mut facts = BlendFacts {
         first: Arc::clone(first),
@@ -131,6 +166,7 @@ pub fn blend_facts(
         ground: GroundMove::default(),
         along: known.and_then(|known| known.along.clone()),
         stops: None,
+        more: more.iter().map(further).collect::<Result<_, _>>()?,
     };
     match &pass.form {
         BlendForm::Join(place) => {
@@ -148,20 +184,46 @@ pub fn blend_facts(
             facts.ground = blend::join_ground(first, &facts.second, *place);
         }
         BlendForm::Mix { weight, is_aligned: true, .. } => {
-            let along = match facts.along.take() {
-                Some(along) => along,
-                None => Arc::new(blend::align(first, &facts.second).map_err(|error| error.to_string())?),
-            };
+            let along = known_or_aligned(facts.along.take(), first, &facts.second)?;
             facts.stops = Some(along.stops(weight, first.grid.rate));
             facts.along = Some(along);
         }
-        BlendForm::Mix { .. } | BlendForm::Add { .. } => {}
+        BlendForm::Mean { weights, more, is_aligned: true } => {
+            let along = known_or_aligned(facts.along.take(), first, &facts.second)?;
+            facts.along = Some(Arc::clone(&along));
+            let mut all = vec![along];
+            for further in &mut facts.more {
+                let along = known_or_aligned(further.along.take(), first, &further.clip)?;
+                further.along = Some(Arc::clone(&along));
+                all.push(along);
+            }
+            let all: Vec<&Registration> = all.iter().map(|along| &**along).collect();
+            let weights: Vec<f64> = weights.iter().copied().chain(more.iter().map(|own| own.1)).collect();
+            let stops = blend::mean_stops(&weights, &all, first.grid.rate);
+            let mut stops = stops.map_err(|error| error.to_string())?.into_iter();
+            facts.stops = stops.next();
+            for (further, stops) in facts.more.iter_mut().zip(stops) {
+                further.stops = Some(stops);
+            }
+        }
+        BlendForm::Mix { .. } | BlendForm::Add { .. } | BlendForm::Mean { .. } => {}
     }
     Ok(facts)
 }
 
-/// Where the two clips lie along the result's time.
-#[derive(Clone, Copy, Debug, PartialEq)]
+fn known_or_aligned(
+    known: Option<Arc<Registration>>,
+    first: &Clip,
+    other: &Clip,
+) -> Result<Arc<Registration>, String> {
+    match known {
+        Some(along) => Ok(along),
+        None => blend::align(first, other).map(Arc::new).map_err(|error| error.to_string()),
+    }
+}
+
+/// Where the clips lie along the result's time.
+#[derive(Clone, Debug, PartialEq)]
 pub struct LaneBars {
     /// First and last second of the first clip's bar.
     pub first: [f64; 2],
@@ -169,11 +231,13 @@ pub struct LaneBars {
     pub second: [f64; 2],
     /// Of the overlap of a join.
     pub overlap: Option<[f64; 2]>,
+    /// Of the further clips of a mean.
+    pub more: Vec<[f64; 2]>,
 }
 
 /// The bars of a blend of clips of these lengths, `result_secs` long.
-pub fn lane_bars(form: &BlendForm, lengths_secs: [f64; 2], result_secs: f64) -> LaneBars {
-    let [first, second] = lengths_secs;
+pub fn lane_bars(form: &BlendForm, [first, second]: [f64; 2], result_secs: f64) -> LaneBars {
+    let both = |end: f64| LaneBars { first: [0.0, end], second: [0.0, end], overlap: None, more: Vec::new() };
     match form {
         BlendForm::Join(place) => {
             let end = place.first_secs + place.overlap_secs;
@@ -181,25 +245,63 @@ pub fn lane_bars(form: &BlendForm, lengths_secs: [f64; 2], result_secs: f64) -> 
                 first: [0.0, end],
                 second: [place.first_secs, place.first_secs + second - place.second_secs],
                 overlap: Some([place.first_secs, end]),
+                more: Vec::new(),
             }
         }
-        BlendForm::Mix { is_aligned: true, .. } => {
-            LaneBars { first: [0.0, result_secs], second: [0.0, result_secs], overlap: None }
-        }
-        BlendForm::Mix { .. } => {
-            let shorter = first.min(second);
-            LaneBars { first: [0.0, shorter], second: [0.0, shorter], overlap: None }
-        }
-        BlendForm::Add { .. } => {
-            LaneBars { first: [0.0, first], second: [0.0, second.min(first)], overlap: None }
+        BlendForm::Mix { is_aligned: true, .. } => both(result_secs),
+        BlendForm::Mix { .. } => both(first.min(second)),
+        BlendForm::Add { .. } => LaneBars { first: [0.0, first], ..both(second.min(first)) },
+        // Of each as much as the mean takes: all of it in step, else up to the shortest end.
+        BlendForm::Mean { more, .. } => {
+            LaneBars { more: vec![[0.0, result_secs]; more.len()], ..both(result_secs) }
         }
     }
+}
+
+/// The weights of all clips of a mean, the first one's first; none of other forms.
+pub fn mean_weights(form: &BlendForm) -> Vec<f64> {
+    match form {
+        BlendForm::Mean { weights, more, .. } => {
+            weights.iter().copied().chain(more.iter().map(|&(_, weight)| weight)).collect()
+        }
+        BlendForm::Join(_) | BlendForm::Mix { .. } | BlendForm::Add { .. } => Vec::new(),
+    }
+}
+
+/// The same mean with another weight for one of its clips.
+pub fn with_mean_weight(form: &BlendForm, clip: usize, weight: f64) -> BlendForm {
+    let mut form = form.clone();
+    if let BlendForm::Mean { weights, more, .. } = &mut form {
+        let own = match clip {
+            0 | 1 => Some(&mut weights[clip]),
+            _ => more.get_mut(clip - 2).map(|(_, weight)| weight),
+        };
+        if let Some(own) = own {
+            *own = weight.max(0.0);
+        }
+    }
+    form
+}
+
+/// What each of these weights is of their sum.
+pub fn mean_shares(weights: &[f64]) -> Vec<f64> {
+    let sum: f64 = weights.iter().sum();
+    weights.iter().map(|weight| if sum > 0.0 { weight / sum } else { 0.0 }).collect()
+}
+
+/// The letter of a blend's clip: A is the one that the pass gets.
+pub fn clip_letter(clip: usize) -> char {
+    u8::try_from(clip)
+        .ok()
+        .and_then(|clip| b'A'.checked_add(clip))
+        .filter(u8::is_ascii_uppercase)
+        .map_or('+', char::from)
 }
 
 /// The weights at knots, and the range they may have on screen.
 pub fn knots_of(form: &BlendForm) -> (Vec<[f64; 2]>, [f64; 2]) {
     match form {
-        BlendForm::Join(_) => (Vec::new(), [0.0, 1.0]),
+        BlendForm::Join(_) | BlendForm::Mean { .. } => (Vec::new(), [0.0, 1.0]),
         BlendForm::Mix { weight, .. } => (weight.knots.clone(), [0.0, 1.0]),
         BlendForm::Add { weight, .. } => (vec![[0.0, *weight]], [-1.0, 2.0]),
     }
@@ -211,6 +313,7 @@ pub fn weight_at(form: &BlendForm, first_secs: f64) -> f64 {
         BlendForm::Join(place) => place.weight(first_secs),
         BlendForm::Mix { weight, .. } => weight.at(first_secs),
         BlendForm::Add { weight, .. } => *weight,
+        BlendForm::Mean { .. } => mean_shares(&mean_weights(form))[1],
     }
 }
 
@@ -262,7 +365,7 @@ fn with_knots(form: &BlendForm, knots: Vec<[f64; 2]>) -> BlendForm {
             let weight = knots.first().map_or(0.0, |knot| knot[1]);
             BlendForm::Add { weight, reference: *reference, side: *side }
         }
-        BlendForm::Join(_) => form.clone(),
+        BlendForm::Join(_) | BlendForm::Mean { .. } => form.clone(),
     }
 }
 
@@ -279,7 +382,7 @@ pub fn held_place(place: JoinPlace, lengths_secs: [f64; 2]) -> JoinPlace {
 }
 
 impl BlendFacts {
-    /// The result's time for one of the first clip: the same, but for mixes in step.
+    /// The result's time for one of the first clip: the same, but in step.
     pub fn result_secs(&self, first_secs: f64) -> f64 {
         let Some(stops) = &self.stops else { return first_secs };
         let frame = stops.partition_point(|stop| stop.first_secs < first_secs);
@@ -292,14 +395,46 @@ impl BlendFacts {
     }
 
     fn stop(&self, result_secs: f64) -> Option<&Stop> {
-        let stops = self.stops.as_ref()?;
+        self.stop_of(self.stops.as_ref()?, result_secs)
+    }
+
+    fn stop_of<'a>(&self, stops: &'a [Stop], result_secs: f64) -> Option<&'a Stop> {
         let frame = (result_secs * self.first.grid.rate).round().max(0.0) as usize;
         stops.get(frame.min(stops.len().saturating_sub(1)))
     }
 
-    /// The two clips at a time of the result: which time of each, and where it is set down. `None` where a clip has no part. In a mix
-    /// that goes its own way both are set down on the result.
-    pub fn poses(&self, form: &BlendForm, result: &Clip, secs: f64) -> [Option<(f64, GroundMove)>; 2] {
+    /// The clips at a time of the result, each set down where it is taken from, with its letter; a clip without a part is left out. In
+    /// a blend that goes its own way they are set down on the result.
+    pub fn figures(&self, form: &BlendForm, result: &Clip, secs: f64) -> Vec<FaintFigure> {
+        let further =
+            self.more.iter().map(|further| (&further.clip, self.further_pose(form, further, result, secs)));
+        let both = [&self.first, &self.second].into_iter().zip(self.poses(form, result, secs));
+        let all = both.chain(further).enumerate();
+        all.filter_map(|(number, (clip, pose))| {
+            let (time_secs, place) = pose?;
+            Some(FaintFigure { clip: Arc::clone(clip), time_secs, place, letter: clip_letter(number) })
+        })
+        .collect()
+    }
+
+    fn further_pose(
+        &self,
+        form: &BlendForm,
+        further: &Further,
+        result: &Clip,
+        secs: f64,
+    ) -> Option<(f64, GroundMove)> {
+        match (form, &further.stops) {
+            (BlendForm::Mean { is_aligned: true, .. }, Some(stops)) => {
+                let at = self.stop_of(stops, secs)?.second_secs;
+                Some((at, onto_result(result, secs, &further.clip, at)))
+            }
+            (BlendForm::Mean { is_aligned: false, .. }, _) => Some((secs, GroundMove::default())),
+            _ => None,
+        }
+    }
+
+    fn poses(&self, form: &BlendForm, result: &Clip, secs: f64) -> [Option<(f64, GroundMove)>; 2] {
         let none = GroundMove::default();
         match form {
             BlendForm::Join(place) => {
@@ -307,7 +442,7 @@ impl BlendFacts {
                 let other = secs - place.first_secs + place.second_secs;
                 [own, (secs >= place.first_secs).then_some((other, self.ground))]
             }
-            BlendForm::Mix { is_aligned: true, .. } => {
+            BlendForm::Mix { is_aligned: true, .. } | BlendForm::Mean { is_aligned: true, .. } => {
                 let Some(stop) = self.stop(secs) else { return [None, None] };
                 let onto = |clip: &Clip, at: f64| (at, onto_result(result, secs, clip, at));
                 [Some(onto(&self.first, stop.first_secs)), Some(onto(&self.second, stop.second_secs))]
@@ -316,7 +451,9 @@ impl BlendFacts {
             BlendForm::Mix { weight, root, .. } if *root != RootFrom::Both || weight.only().is_none() => {
                 [&self.first, &self.second].map(|clip| Some((secs, onto_result(result, secs, clip, secs))))
             }
-            BlendForm::Mix { .. } | BlendForm::Add { .. } => [Some((secs, none)), Some((secs, none))],
+            BlendForm::Mix { .. } | BlendForm::Add { .. } | BlendForm::Mean { .. } => {
+                [Some((secs, none)), Some((secs, none))]
+            }
         }
     }
 }
@@ -326,8 +463,7 @@ fn onto_result(result: &Clip, secs: f64, clip: &Clip, at: f64) -> GroundMove {
     if result.skeleton.len() != clip.skeleton.len() {
         return GroundMove::default();
     }
-    let landmarks = Landmarks::of(result);
-    Cloud::of(result, &[secs], &landmarks).fit(0, &Cloud::of(clip, &[at], &landmarks), 0, 0).1
+    blend::pose_onto(result, secs, clip, at)
 }
 
 #[cfg(test)]

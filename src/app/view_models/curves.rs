@@ -171,11 +171,17 @@ pub fn curve_set(
     key: &CurveKey,
     progress: &dyn Progress,
 ) -> Result<CurveSet, Cancelled> {
-    let times = SampleTimes::new(&source.grid);
+    // A blend goes on beyond the source, or ends before it.
+    let longer = if result.duration_secs > source.duration_secs { result } else { source };
+    let times = SampleTimes::new(&longer.grid);
     let all: Vec<f64> = (0..times.len()).map(|index| times.time(index)).collect();
-    let (before, unit) = rows(source, key, &all, None, progress)?;
+    let (mut before, unit) = rows(source, key, &all, None, progress)?;
     let is_same = source.same_joint(result, key.joint);
-    let after = if is_same { None } else { Some(rows(result, key, &all, None, progress)?.0) };
+    let mut after = if is_same { None } else { Some(rows(result, key, &all, None, progress)?.0) };
+    if let Some(after) = &mut after {
+        end(&mut before, &all, source);
+        end(after, &all, result);
+    }
     let mut after = after.map(Vec::into_iter);
     let lines = before
         .into_iter()
@@ -187,6 +193,16 @@ pub fn curve_set(
         .collect();
     let bands = bands(result, key, &all);
     Ok(CurveSet { joint: key.joint, view: key.view, bands, times, lines, unit })
+}
+
+/// Takes out what lies beyond a clip's end, where its last pose would be held.
+fn end(rows: &mut Rows, times: &[f64], clip: &Clip) {
+    let beyond = times.partition_point(|&secs| secs <= clip.duration_secs + 0.25 / clip.grid.rate.max(1.0));
+    for (_, _, row) in rows {
+        if let Some(beyond) = row.get_mut(beyond..) {
+            beyond.fill(f32::NAN);
+        }
+    }
 }
 
 /// The rows of `clip` alone at some times, going on from the numbers `start` on the left.

@@ -34,8 +34,8 @@ mod trail;
 mod words;
 
 pub use blend::{
-    BlendFacts, BlendKind, LaneBars, blend_facts, held_place, knots_of, lane_bars, new_blend, weight_at,
-    with_knot, with_knot_at, without_knot,
+    BlendFacts, BlendKind, LaneBars, blend_facts, clip_letter, held_place, knots_of, lane_bars, mean_shares,
+    mean_weights, new_blend, weight_at, with_knot, with_knot_at, with_mean_weight, without_knot,
 };
 pub use carry::{
     BarMark, CarryBar, CarryFacts, CarryLine, CarryRow, CarryState, Lane, carry_bars, carry_facts,

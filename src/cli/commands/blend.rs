@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use crate::blend::{self, BlendError, JoinPlace, Mask, MixAlong, MixHow};
+use crate::blend::{self, BlendError, JoinPlace, Mask, MeanHow, MixAlong, MixHow, Registration};
 use crate::cli::DONE;
 use crate::cli::args::BlendArgs;
 use crate::cli::error::CliError;
@@ -11,6 +11,7 @@ use crate::cli::output::Output;
 use crate::clip::Clip;
 use crate::exchange::{self, Format, Guard};
 use crate::retarget::{self, Partner};
+use crate::skeleton::Skeleton;
 
 /// The result takes the first clip's place in its file; the file's other clips stay.
 pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError> {
@@ -36,7 +37,7 @@ pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError>
     let mut clips = Vec::with_capacity(others.len());
     for other in &others {
         let path = &other.source.path;
-        let carried = |source| CliError::Retarget { path: path.clone(), source };
+        let carried = |source| CliError::Carry { path: path.clone(), source };
         let Partner { clip, is_carried, notes } =
             retarget::partner(other.clip(), &first.clip().skeleton).map_err(carried)?;
         for note in &notes {
@@ -50,6 +51,14 @@ pub(crate) fn run(args: &BlendArgs, output: &mut Output) -> Result<u8, CliError>
     let second = others[0].source.path.clone();
     let failed = |source| CliError::Blend { first: first.source.path.clone(), second, source };
     let blended = blended(args, first.clip(), &clips).map_err(failed)?;
+    if args.add.is_none() {
+        let all: Vec<&Clip> = std::iter::once(first.clip()).chain(&clips).map(|clip| &**clip).collect();
+        if let Some(jump) = blend::worst_jump(&blended, &all) {
+            let advice =
+                if args.align || args.join.is_some() { "" } else { "; --align turns both to one heading" };
+            output.note(&first.source.path, &format!("{}{advice}", jump.words(&blended.skeleton)));
+        }
+    }
     let lengths: Vec<String> = std::iter::once(&first)
         .chain(&others)
         .map(|one| format!("{:.3} s", one.clip().duration_secs))
@@ -85,14 +94,16 @@ fn check_counts(args: &BlendArgs) -> Result<(), CliError> {
 
 fn blended(args: &BlendArgs, a: &Arc<Clip>, others: &[Arc<Clip>]) -> Result<Arc<Clip>, BlendError> {
     let b = &others[0];
-    let mask = match &args.joints {
-        Some(labels) => Mask::joints(&a.skeleton, labels)?,
-        None => Mask::all(&a.skeleton),
-    };
+    let mask = mask(args, &a.skeleton)?;
     let made = if let Some(weights) = &args.mean {
         let clips = std::iter::once(a).chain(others).map(|clip| &**clip);
         let weighted: Vec<(&Clip, f64)> = clips.zip(weights.iter().copied()).collect();
-        blend::mix_many(&weighted, &mask)?
+        let along = others.iter().filter(|_| args.align).map(|other| blend::align(a, other));
+        let along = along.collect::<Result<Vec<Registration>, BlendError>>()?;
+        let along: Vec<&Registration> = along.iter().collect();
+        let holds_feet = holds_feet(args);
+        let along = args.align.then_some(&*along);
+        blend::mix_many_by(&weighted, &MeanHow { mask: &mask, along, holds_feet })?
     } else if let Some(overlap_secs) = args.join {
         let place = if args.find_place {
             nearest_place(a, b, overlap_secs)?
@@ -108,8 +119,7 @@ fn blended(args: &BlendArgs, a: &Arc<Clip>, others: &[Arc<Clip>]) -> Result<Arc<
         blend::add(a, b, weight, args.reference.reference(), args.side.side(), &mask)?
     } else {
         let weight = args.mix.clone().unwrap_or(MixAlong::constant(0.0));
-        let holds_feet = if args.align { !args.no_plant_feet } else { args.plant_feet };
-        let how = MixHow { weight, mask, root: args.root.root(), holds_feet };
+        let how = MixHow { weight, mask, root: args.root.root(), holds_feet: holds_feet(args) };
         if args.align {
             let along = blend::align(a, b)?;
             blend::mix_aligned(a, b, &along, &how)?
@@ -118,6 +128,38 @@ fn blended(args: &BlendArgs, a: &Arc<Clip>, others: &[Arc<Clip>]) -> Result<Arc<
         }
     };
     Ok(Arc::new(made))
+}
+
+/// Frame by frame is what it says; in step there are feet to speak of.
+fn holds_feet(args: &BlendArgs) -> bool {
+    if args.align { !args.no_plant_feet } else { args.plant_feet }
+}
+
+/// Limbs first, then joints, each with its factor behind a `=` where it has one.
+fn mask(args: &BlendArgs, skeleton: &Skeleton) -> Result<Mask, BlendError> {
+    if args.joints.is_none() && args.limbs.is_none() {
+        return Ok(Mask::all(skeleton));
+    }
+    let factor_of = |text: &str| -> (String, f64) {
+        // A joint may have such a sign in its name.
+        let whole = || (text.to_owned(), 1.0);
+        if skeleton.find(text).is_some() {
+            return whole();
+        }
+        let split =
+            text.rsplit_once('=').and_then(|(label, factor)| Some((label, factor.trim().parse().ok()?)));
+        split.map_or_else(whole, |(label, factor)| (label.to_owned(), factor))
+    };
+    let mut mask = Mask::none(skeleton);
+    for text in args.limbs.iter().flatten() {
+        let (label, factor) = factor_of(text);
+        mask = mask.or(&Mask::limb(skeleton, &label, args.soft)?.times(factor)?);
+    }
+    for text in args.joints.iter().flatten() {
+        let (label, factor) = factor_of(text);
+        mask = mask.with(skeleton, &label, factor)?;
+    }
+    Ok(mask)
 }
 
 /// Where the poses of both clips are nearest over an overlap, of places that keep at least half of each clip.

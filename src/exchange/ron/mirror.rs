@@ -4,8 +4,8 @@ use serde::{Deserialize, Serialize};
 
 pub(super) use super::super::limits::mirror::Joint as JointLimit;
 
-/// The newest version this program knows. 1 holds mends alone; 2 all other passes too; 3 markers, what else is looked for, and what a
-/// retarget holds and measures from. A scene is written in the oldest
+/// The newest version this program knows. 1 holds mends alone; 2 all other passes too; 3 markers, what else is looked for, means of clips, and what
+/// a retarget holds and measures from. A scene is written in the oldest
 /// version that holds it, so that an older program opens what it can.
 pub(super) const VERSION: u32 = 3;
 
@@ -268,6 +268,14 @@ pub(super) enum BlendForm {
         reference: Reference,
         side: Side,
     },
+    Mean {
+        /// Weights of this clip and of the other.
+        weights: (f64, f64),
+        /// Source, clip and weight of each further one.
+        #[serde(default, skip_serializing_if = "Vec::is_empty")]
+        more: Vec<(usize, usize, f64)>,
+        aligned: bool,
+    },
 }
 
 #[derive(Serialize, Deserialize)]
@@ -380,6 +388,7 @@ impl Step {
                 let is_plain = are_plain(rests) && are_none(roots) && feet.is_none();
                 if is_plain && hands.is_empty() && limits.is_none() { 2 } else { 3 }
             }
+            Self::Blend(Blend { form: BlendForm::Mean { .. }, .. }) => 3,
             _ => 2,
         }
     }

@@ -145,6 +145,11 @@ fn blend_from(blend: mirror::Blend) -> BlendPass {
                 mirror::Side::Parent => Side::Parent,
             },
         },
+        mirror::BlendForm::Mean { weights: (own, other), more, aligned } => BlendForm::Mean {
+            weights: [own, other],
+            more: more.into_iter().map(|(source, clip, weight)| (ClipRef { source, clip }, weight)).collect(),
+            is_aligned: aligned,
+        },
     };
     BlendPass { other: ClipRef { source, clip }, form, joints: blend.joints, holds_feet: blend.holds_feet }
 }
@@ -176,6 +181,11 @@ fn blend_to(pass: &BlendPass) -> mirror::Blend {
                 Side::Body => mirror::Side::Body,
                 Side::Parent => mirror::Side::Parent,
             },
+        },
+        BlendForm::Mean { weights: [own, other], more, is_aligned } => mirror::BlendForm::Mean {
+            weights: (*own, *other),
+            more: more.iter().map(|&(clip, weight)| (clip.source, clip.clip, weight)).collect(),
+            aligned: *is_aligned,
         },
     };
     let other = (pass.other.source, pass.other.clip);

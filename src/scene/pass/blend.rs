@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use crate::blend::{
-    self, BlendError, JoinPlace, Mask, MixAlong, MixHow, Reference, Registration, RootFrom, Side,
+    self, BlendError, JoinPlace, Mask, MeanHow, MixAlong, MixHow, Reference, Registration, RootFrom, Side,
 };
 use crate::clip::Clip;
 use crate::retarget::{self, Partner};
@@ -36,6 +36,15 @@ pub enum BlendForm {
         /// On which side it is composed.
         side: Side,
     },
+    /// The mean of this clip, the other and further ones.
+    Mean {
+        /// Weights of this clip and of the other, 0 and more. Only their ratio, and that to the further ones' weights, matters.
+        weights: [f64; 2],
+        /// Further clips and their weights.
+        more: Vec<(ClipRef, f64)>,
+        /// Bring the steps of all into time with this clip's.
+        is_aligned: bool,
+    },
 }
 
 /// Blends another clip in.
@@ -51,6 +60,32 @@ pub struct BlendPass {
     pub holds_feet: bool,
 }
 
+impl BlendForm {
+    /// The clips beyond the other one, with their weights; of a mean alone.
+    pub fn more(&self) -> &[(ClipRef, f64)] {
+        match self {
+            Self::Mean { more, .. } => more,
+            Self::Join(_) | Self::Mix { .. } | Self::Add { .. } => &[],
+        }
+    }
+}
+
+impl BlendPass {
+    /// The title where it is known what the other clip is called.
+    pub fn title_with(&self, other: &str) -> String {
+        match &self.form {
+            BlendForm::Join(_) => format!("Join {other}"),
+            BlendForm::Mix { weight, .. } => match weight.only() {
+                Some(only) => format!("Mix in {:.0} % of {other}", 100.0 * only),
+                None => format!("Mix in {other}"),
+            },
+            BlendForm::Add { weight, .. } => format!("Add {:.0} % of {other}", 100.0 * weight),
+            BlendForm::Mean { more, .. } if more.is_empty() => format!("Mean with {other}"),
+            BlendForm::Mean { more, .. } => format!("Mean of {} clips", more.len() + 2),
+        }
+    }
+}
+
 /// Two clips as a blend has met them: the second brought to the first's skeleton, and which of their times belong together.
 #[derive(Clone, Debug)]
 pub(super) struct Pair {
@@ -61,19 +96,23 @@ pub(super) struct Pair {
 }
 
 impl PassMemory {
-    /// The pair of these very clips, from before or new.
-    fn pair(&mut self, first: &Arc<Clip>, given: &Arc<Clip>) -> Result<&mut Pair, PassError> {
-        let is_of = |pair: &Pair| Arc::ptr_eq(&pair.first, first) && Arc::ptr_eq(&pair.given, given);
-        let pair = match self.pair.take().filter(is_of) {
-            Some(pair) => pair,
-            None => Pair {
-                first: Arc::clone(first),
-                given: Arc::clone(given),
-                partner: retarget::partner(given, &first.skeleton)?,
-                along: None,
-            },
-        };
-        Ok(self.pair.insert(pair))
+    /// A clip with each of these, as pairs from before or new; others are forgotten.
+    fn pairs(&mut self, first: &Arc<Clip>, all: &[Arc<Clip>]) -> Result<&mut [Pair], PassError> {
+        let mut known = std::mem::take(&mut self.pairs);
+        for given in all {
+            let is_of = |pair: &Pair| Arc::ptr_eq(&pair.first, first) && Arc::ptr_eq(&pair.given, given);
+            let pair = match known.iter().position(is_of) {
+                Some(place) => known.swap_remove(place),
+                None => Pair {
+                    first: Arc::clone(first),
+                    given: Arc::clone(given),
+                    partner: retarget::partner(given, &first.skeleton)?,
+                    along: None,
+                },
+            };
+            self.pairs.push(pair);
+        }
+        Ok(&mut self.pairs)
     }
 }
 
@@ -89,15 +128,7 @@ impl Pair {
 
 impl PassKind for BlendPass {
     fn title(&self) -> String {
-        let with = format!("clip {} of file {}", self.other.clip + 1, self.other.source + 1);
-        match &self.form {
-            BlendForm::Join(_) => format!("Join {with}"),
-            BlendForm::Mix { weight, .. } => match weight.only() {
-                Some(only) => format!("Mix in {:.0} % of {with}", 100.0 * only),
-                None => format!("Mix in {with}"),
-            },
-            BlendForm::Add { weight, .. } => format!("Add {:.0} % of {with}", 100.0 * weight),
-        }
+        self.title_with(&format!("clip {} of file {}", self.other.clip + 1, self.other.source + 1))
     }
 
     fn explanation(&self) -> &'static str {
@@ -110,6 +141,9 @@ impl PassKind for BlendPass {
             }
             BlendForm::Add { .. } => {
                 "Lays what another clip does beyond its reference over this one. The weight may be negative or above one."
+            }
+            BlendForm::Mean { .. } => {
+                "The mean of this clip and any number of others, each by its weight. In step, all are bent in time so that their steps fall together."
             }
         }
     }
@@ -126,6 +160,14 @@ impl PassKind for BlendPass {
                 only.into_iter().collect()
             }
             BlendForm::Add { weight, .. } => vec![PassNumber::new("weight", 100.0 * weight, "%")],
+            BlendForm::Mean { weights: [own, other], more, .. } => {
+                let mut numbers = vec![
+                    PassNumber::new("weight of A", *own, ""),
+                    PassNumber::new("weight of B", *other, ""),
+                ];
+                numbers.extend(more.iter().map(|&(_, weight)| PassNumber::new("weight", weight, "")));
+                numbers
+            }
         };
         numbers.extend(self.joints.as_ref().map(|joints| PassNumber::count("joints", joints.len())));
         numbers
@@ -141,16 +183,26 @@ impl PassKind for BlendPass {
         others: &dyn Others,
         memory: &mut PassMemory,
     ) -> Result<Outcome, PassError> {
-        let missing = PassError::NoSuchClip { file: self.other.source + 1, clip: self.other.clip + 1 };
-        let other = others.clip(self.other).ok_or(missing)?;
-        let pair = memory.pair(clip, &other)?;
-        let Partner { clip: other, notes, .. } = pair.partner.clone();
+        let given = |wanted: ClipRef| {
+            let missing = PassError::NoSuchClip { file: wanted.source + 1, clip: wanted.clip + 1 };
+            others.clip(wanted).ok_or(missing)
+        };
+        let more = self.form.more();
+        let all = std::iter::once(self.other).chain(more.iter().map(|&(clip, _)| clip)).map(given);
+        let pairs = memory.pairs(clip, &all.collect::<Result<Vec<_>, _>>()?)?;
+        let Partner { clip: other, notes, .. } = pairs[0].partner.clone();
+        let further = pairs[1..].iter().flat_map(|pair| pair.partner.notes.clone());
+        let mut notes: Vec<String> = notes.into_iter().chain(further).collect();
         let mask = match &self.joints {
             None => Mask::all(&clip.skeleton),
             Some(list) => {
                 let mut factors = vec![0.0; clip.skeleton.len()];
                 for &(joint, factor) in list {
                     let count = factors.len();
+                    if !(0.0..=1.0).contains(&factor) {
+                        let expected = "factors from 0 to 1 for its joints";
+                        return Err(PassError::Parameter { name: "mask", expected, found: factor });
+                    }
                     *factors.get_mut(joint).ok_or(PassError::NoSuchJoint { joint, count })? = factor;
                 }
                 Mask { factors }
@@ -162,7 +214,7 @@ impl PassKind for BlendPass {
             BlendForm::Mix { weight, is_aligned, root } => {
                 let how = MixHow { weight: weight.clone(), mask, root: *root, holds_feet: self.holds_feet };
                 if *is_aligned {
-                    blend::mix_aligned(clip, &other, pair.along()?, &how)?
+                    blend::mix_aligned(clip, &other, pairs[0].along()?, &how)?
                 } else {
                     blend::mix_by(clip, &other, &how)?
                 }
@@ -170,7 +222,25 @@ impl PassKind for BlendPass {
             BlendForm::Add { weight, reference, side } => {
                 blend::add(clip, &other, *weight, *reference, *side, &mask)?
             }
+            BlendForm::Mean { weights: [own, second], is_aligned, .. } => {
+                let weights = std::iter::once(*second).chain(more.iter().map(|&(_, weight)| weight));
+                if *is_aligned {
+                    for pair in &mut *pairs {
+                        pair.along()?;
+                    }
+                }
+                let clips = pairs.iter().zip(weights).map(|(pair, weight)| (&*pair.partner.clip, weight));
+                let clips: Vec<(&Clip, f64)> = std::iter::once((&**clip, *own)).chain(clips).collect();
+                let along: Vec<&Registration> = pairs.iter().filter_map(|pair| pair.along.as_ref()).collect();
+                let along = is_aligned.then_some(&*along);
+                blend::mix_many_by(&clips, &MeanHow { mask: &mask, along, holds_feet: self.holds_feet })?
+            }
         };
+        if !matches!(self.form, BlendForm::Add { .. }) {
+            let clips: Vec<&Clip> =
+                std::iter::once(&**clip).chain(pairs.iter().map(|pair| &*pair.partner.clip)).collect();
+            notes.extend(blend::worst_jump(&made, &clips).map(|jump| jump.words(&made.skeleton)));
+        }
         Ok(Outcome { clip: made, notes })
     }
 
@@ -185,7 +255,8 @@ impl PassKind for BlendPass {
     }
 
     fn needs(&self) -> Vec<Need> {
-        vec![Need::Clip(self.other)]
+        let more = self.form.more().iter().map(|&(clip, _)| clip);
+        std::iter::once(self.other).chain(more).map(Need::Clip).collect()
     }
 }
 
@@ -202,7 +273,7 @@ mod tests {
     use super::*;
     use crate::clip::{FrameGrid, JointTracks, RotationTrack, Times};
     use crate::rotor::Axis;
-    use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
+    use crate::skeleton::{Joint, Skeleton};
 
     /// A limb that swings at an even pace, or at an uneven one.
     fn swing(skeleton: &Arc<Skeleton>, unevenness: f64) -> Arc<Clip> {
@@ -223,11 +294,12 @@ mod tests {
         })
     }
 
-    struct One(Arc<Clip>);
+    /// The clips of file 0 from number 1 on.
+    struct Given(Vec<Arc<Clip>>);
 
-    impl Others for One {
-        fn clip(&self, _clip: ClipRef) -> Option<Arc<Clip>> {
-            Some(Arc::clone(&self.0))
+    impl Others for Given {
+        fn clip(&self, clip: ClipRef) -> Option<Arc<Clip>> {
+            self.0.get(clip.clip.checked_sub(1)?).cloned()
         }
 
         fn skeleton(&self, _source: usize) -> Option<Arc<Skeleton>> {
@@ -235,21 +307,52 @@ mod tests {
         }
     }
 
+    fn figure() -> Arc<Skeleton> {
+        let joints = vec![
+            Joint::placed("hip", 0, None, DVec3::Y),
+            Joint::placed("foot", 1, Some(0), DVec3::new(0.2, -1.0, 0.1)),
+        ];
+        Arc::new(Skeleton::new(joints).unwrap())
+    }
+
+    #[test]
+    fn a_mean_takes_all_its_clips_and_forgets_those_that_left() {
+        let skeleton = figure();
+        let [first, second, third] = [0.0, 0.06, -0.05].map(|unevenness| swing(&skeleton, unevenness));
+        let others = Given(vec![Arc::clone(&second), Arc::clone(&third)]);
+        let further = |clip: usize| (ClipRef { source: 0, clip }, 3.0);
+        let pass = |more: Vec<(ClipRef, f64)>, is_aligned| BlendPass {
+            other: ClipRef { source: 0, clip: 1 },
+            form: BlendForm::Mean { weights: [1.0, 2.0], more, is_aligned },
+            joints: None,
+            holds_feet: false,
+        };
+        let all = [(&*first, 1.0), (&*second, 2.0), (&*third, 3.0)];
+        let mask = Mask::all(&skeleton);
+        let mut memory = PassMemory::default();
+        for is_aligned in [false, true] {
+            let pass = pass(vec![further(2)], is_aligned);
+            let made = pass.apply_again(&first, &others, &mut memory).unwrap().clip;
+            let along = [&second, &third].map(|clip| blend::align(&first, clip).unwrap());
+            let along: Vec<&Registration> = along.iter().collect();
+            let along = is_aligned.then_some(&*along);
+            let how = MeanHow { mask: &mask, along, holds_feet: false };
+            assert_eq!(made, blend::mix_many_by(&all, &how).unwrap(), "in step: {is_aligned}");
+            assert_eq!(pass.needs().len(), 2);
+            assert_eq!(memory.pairs.len(), 2);
+        }
+        assert_eq!(pass(vec![further(2)], false).title(), "Mean of 3 clips");
+        pass(vec![], false).apply_again(&first, &others, &mut memory).unwrap();
+        assert_eq!(memory.pairs.len(), 1);
+        let error = pass(vec![further(7)], false).apply(&first, &others).unwrap_err().to_string();
+        assert!(error.contains("expected clip 8 of file 1"), "{error}");
+    }
+
     #[test]
     fn what_was_aligned_is_kept_while_the_weight_changes() {
-        let joint = |name: &str, number, parent, place| Joint {
-            name: name.to_owned(),
-            number,
-            parent,
-            rest: Transform::from_translation(place),
-            kind: JointKind::Joint,
-            tips: vec![],
-        };
-        let joints =
-            vec![joint("hip", 0, None, DVec3::Y), joint("foot", 1, Some(0), DVec3::new(0.2, -1.0, 0.1))];
-        let skeleton = Arc::new(Skeleton::new(joints).unwrap());
+        let skeleton = figure();
         let (first, given) = (swing(&skeleton, 0.0), swing(&skeleton, 0.06));
-        let others = One(Arc::clone(&given));
+        let others = Given(vec![Arc::clone(&given)]);
         let pass = |weight| BlendPass {
             other: ClipRef { source: 0, clip: 1 },
             form: BlendForm::Mix {
@@ -268,7 +371,7 @@ mod tests {
         assert_eq!(again(&first, 0.3, &mut memory).unwrap(), alone(&first, 0.3));
         assert_eq!(again(&first, 0.6, &mut memory).unwrap(), alone(&first, 0.6));
         // Another way through both, put there by hand, is the one that the next weight goes: nothing is aligned anew.
-        memory.pair.as_mut().unwrap().along = Some(Registration::straight(&first, &given));
+        memory.pairs[0].along = Some(Registration::straight(&first, &given));
         assert_ne!(again(&first, 0.6, &mut memory).unwrap(), alone(&first, 0.6));
         // For another clip nothing is taken over.
         let other = swing(&skeleton, -0.03);

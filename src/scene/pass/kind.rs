@@ -30,7 +30,7 @@ impl From<Clip> for Outcome {
 /// two long clips need not be aligned anew for each frame. It changes no result.
 #[derive(Clone, Debug, Default)]
 pub struct PassMemory {
-    pub(super) pair: Option<Pair>,
+    pub(super) pairs: Vec<Pair>,
 }
 
 /// One kind of pass: its parameters, and what they do to a clip.
