@@ -238,7 +238,8 @@ mod tests {
         let copy = keys.into_vec();
         assert_ne!(copy.as_ptr(), place);
         assert_eq!(shared, Keys::from(copy));
-        assert_eq!(shared.into_vec().as_ptr(), place);
+        let own = shared.into_vec();
+        assert_eq!(own.as_ptr(), place);
     }
 
     #[test]

@@ -175,7 +175,9 @@ mod tests {
         let rest = [7.0, 8.0, 9.0];
         let mut rows = FewAxesRows::new([true, false, true], rest);
         rows.reserve(3);
-        [[1.0, 2.0], [3.0, -4.5], [f64::NAN, 5.0]].into_iter().for_each(|own| rows.push(own));
+        for own in [[1.0, 2.0], [3.0, -4.5], [f64::NAN, 5.0]] {
+            rows.push(own);
+        }
         let keys = rows.finish();
         let expected = [DVec3::new(1.0, 8.0, 2.0), DVec3::new(3.0, 8.0, -4.5)];
         assert_eq!((keys.len(), keys.vector(0), keys.vector(1)), (3, expected[0], expected[1]));

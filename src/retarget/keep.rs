@@ -198,8 +198,8 @@ pub(super) fn weight(frame: usize, (first, last): (usize, usize), count: usize, 
 fn weights(places: &[Option<DVec3>], reach: usize) -> Vec<f64> {
     let mut weights = vec![0.0; places.len()];
     for run in runs(places) {
-        for frame in run.0..=run.1 {
-            weights[frame] = weight(frame, run, places.len(), reach);
+        for (own, frame) in weights[run.0..=run.1].iter_mut().zip(run.0..) {
+            *own = weight(frame, run, places.len(), reach);
         }
     }
     weights

@@ -53,16 +53,13 @@ pub(super) fn copies(
                 && (own < copy || !is_meant[copy])
                 && is_alike(&rest[own], &rest[copy])
         };
-        let found = match below_copy {
-            Some(above) => {
-                let kids = skeleton.children(above).iter().copied().filter(|&own| fits(own));
-                pick(skeleton, kids, copy)
-            }
-            None => {
-                let all = (0..n)
-                    .filter(|&own| size[own] >= LEAST && same_frame(joints[own].parent, parent) && fits(own));
-                pick(skeleton, all, copy)
-            }
+        let found = if let Some(above) = below_copy {
+            let kids = skeleton.children(above).iter().copied().filter(|&own| fits(own));
+            pick(skeleton, kids, copy)
+        } else {
+            let all = (0..n)
+                .filter(|&own| size[own] >= LEAST && same_frame(joints[own].parent, parent) && fits(own));
+            pick(skeleton, all, copy)
         };
         of[copy] = found;
         if found.is_some() && below_copy.is_none() {
