@@ -12,6 +12,7 @@ use std::sync::Arc;
 use std::time::Instant;
 
 use cpu_time::ProcessTime;
+use glam::DVec3;
 use turnwright::clip::{Clip, FileAngles, FrameGrid, JointTracks, RotationTrack, Times};
 use turnwright::exchange::{bvh, disk};
 use turnwright::limit::{LearnOptions, Limits, learned};
@@ -32,6 +33,7 @@ fn main() {
     let text = bvh::from_clip(&clip).0;
     // Learned from its first minute, as from a take that is known to be clean.
     let limits = Arc::new(learned(&self::clip(frames.min(7200)), &LearnOptions::default()));
+    assert!(!limits.joints.is_empty(), "there are limits to be beyond");
     let named =
         |kinds: Vec<SnagKind>, limits: Option<&Arc<Limits>>| SurveyOptions { kinds, limits: limits.cloned() };
     let mut jobs = vec![
@@ -141,7 +143,8 @@ fn clip(frames: usize) -> Clip {
             name: format!("joint{number}"),
             number,
             parent: number.checked_sub(1),
-            rest: Transform::IDENTITY,
+            // Its heading is the twist of its limb, so that there are limits of its swing to learn.
+            rest: Transform::from_translation(DVec3::Z),
             kind: JointKind::Joint,
             tips: vec![],
         })

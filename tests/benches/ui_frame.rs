@@ -22,12 +22,15 @@ use turnwright::app::paint::Headless;
 use turnwright::app::{Start, Window};
 use turnwright::clip::{Clip, FrameGrid, JointTracks, KeyChange, KeyEdit, RotationTrack, Times};
 use turnwright::exchange::{OpenOptions, Source, bvh, open_bytes};
+use turnwright::limit::{LearnOptions, learned};
 use turnwright::rotor::{Bivector, Rotor};
 use turnwright::scene::{Edit, KeysPass, PassId, PassStep};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 const RATE: f64 = 120.0;
 const JOINTS: usize = 60;
+/// The joint whose curves are looked at: one with a limit.
+const CHOSEN: usize = 2;
 
 /// A trunk, two arms with hands, two legs: 60 joints.
 fn skeleton() -> Skeleton {
@@ -142,6 +145,12 @@ impl Desk {
         let mut window = Window::new(headless.context(), Start::Empty);
         let clip = Arc::clone(&source.clips[0]);
         window.show_sources(vec![source]);
+        window.ask(Command::ChooseJoint(Some(CHOSEN)));
+        // Their rooms are shaded behind the curves.
+        let limits = learned(&self::clip(60 * RATE as usize), &LearnOptions::default());
+        assert!(!limits.joints.is_empty(), "there are limits to shade");
+        assert!(limits.joints.contains_key(&CHOSEN), "its own among them");
+        window.ask(Command::Edit(Edit::SetLimits { work: 0, limits: Some(Arc::new(limits)) }));
         let edits = vec![key_edit(&clip, 0.0)];
         window.ask(Command::Edit(Edit::AddPass { work: 0, step: KeysPass { edits }.into(), at: 0 }));
         let start = Instant::now();
@@ -211,7 +220,7 @@ impl Desk {
 fn key_edit(clip: &Clip, by: f64) -> KeyEdit {
     let secs = clip.grid.time(clip.grid.count() / 2);
     let turn = Rotor::from_plane_angles(Bivector::new(0.2 + by, 0.1, 0.0));
-    KeyEdit { joint: 0, change: KeyChange::Set(vec![(secs, turn)]) }
+    KeyEdit { joint: CHOSEN, change: KeyChange::Set(vec![(secs, turn)]) }
 }
 
 fn main() {
