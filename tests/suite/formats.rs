@@ -31,6 +31,15 @@ struct Store {
 }
 
 impl Store {
+    /// The accessor of the times that all clips share.
+    fn times(&mut self) -> usize {
+        let secs: Vec<f32> = (0..KEYS).map(|key| key as f32 / 24.0).collect();
+        let times = self.floats(&secs, "SCALAR", KEYS);
+        self.accessors[times]["min"] = json!([0.0]);
+        self.accessors[times]["max"] = json!([f64::from(secs[KEYS - 1])]);
+        times
+    }
+
     fn view(&mut self, bytes: &[u8], stride: Option<usize>) -> usize {
         self.bytes.resize(self.bytes.len().next_multiple_of(4), 0);
         let mut view = json!({ "buffer": 0, "byteOffset": self.bytes.len(), "byteLength": bytes.len() });
@@ -156,26 +165,27 @@ impl Store {
     }
 }
 
+/// Rotations x, y, z, w, one for each key.
+fn thrown_turns(dice: &mut Dice) -> Vec<[f64; 4]> {
+    let mut turn = || {
+        let numbers: [f64; 4] = std::array::from_fn(|_| dice.below(1000) as f64 / 1000.0 + 0.01);
+        let length = numbers.iter().map(|number| number * number).sum::<f64>().sqrt();
+        numbers.map(|number| number / length)
+    };
+    (0..KEYS).map(|_| turn()).collect()
+}
+
 /// A document that other programs read too: 76 clips of a chain of joints that 84 skins share, in the encodings that they know,
 /// and the rotations that each clip has for each joint.
 fn plain_crowd() -> (Value, Vec<Vec<Vec<[f64; 4]>>>) {
     let mut dice = Dice::new(84);
     let mut store = Store::default();
-    let secs: Vec<f32> = (0..KEYS).map(|key| key as f32 / 24.0).collect();
-    let times = store.floats(&secs, "SCALAR", KEYS);
-    store.accessors[times]["min"] = json!([0.0]);
-    store.accessors[times]["max"] = json!([f64::from(secs[KEYS - 1])]);
+    let times = store.times();
     let (mut animations, mut all) = (Vec::new(), Vec::new());
     for clip in 0..CLIPS {
         let (mut channels, mut samplers, mut keys_of) = (Vec::new(), Vec::new(), Vec::new());
         for joint in 0..JOINTS {
-            let keys: Vec<[f64; 4]> = (0..KEYS)
-                .map(|_| {
-                    let numbers: [f64; 4] = std::array::from_fn(|_| dice.below(1000) as f64 / 1000.0 + 0.01);
-                    let length = numbers.iter().map(|number| number * number).sum::<f64>().sqrt();
-                    numbers.map(|number| number / length)
-                })
-                .collect();
+            let keys = thrown_turns(&mut dice);
             let (output, stored) = store.rotations([0, 1, 2, 3, 6, 7][(clip + joint) % 6], &keys);
             channels.push(json!({ "sampler": joint, "target": { "node": joint, "path": "rotation" } }));
             let interpolation = if joint % 4 == 3 { "STEP" } else { "LINEAR" };
@@ -326,23 +336,14 @@ fn below_an_uneven_size_places_are_drawn_out_and_turns_are_products() {
 fn crowd() -> (Value, Vec<Vec<Vec<[f64; 4]>>>) {
     let mut dice = Dice::new(76);
     let mut store = Store::default();
-    let secs: Vec<f32> = (0..KEYS).map(|key| key as f32 / 24.0).collect();
-    let times = store.floats(&secs, "SCALAR", KEYS);
-    store.accessors[times]["min"] = json!([0.0]);
-    store.accessors[times]["max"] = json!([f64::from(secs[KEYS - 1])]);
+    let times = store.times();
     let weights = store.floats(&[0.25; 2 * KEYS], "SCALAR", 2 * KEYS);
     let mut animations = Vec::new();
     let mut all = Vec::new();
     for clip in 0..CLIPS {
         let (mut channels, mut samplers, mut keys_of) = (Vec::new(), Vec::new(), Vec::new());
         for joint in 0..JOINTS {
-            let keys: Vec<[f64; 4]> = (0..KEYS)
-                .map(|_| {
-                    let numbers: [f64; 4] = std::array::from_fn(|_| dice.below(1000) as f64 / 1000.0 + 0.01);
-                    let length = numbers.iter().map(|number| number * number).sum::<f64>().sqrt();
-                    numbers.map(|number| number / length)
-                })
-                .collect();
+            let keys = thrown_turns(&mut dice);
             let (output, stored) = store.rotations((clip + joint) % 7, &keys);
             channels.push(json!({ "sampler": joint, "target": { "node": joint, "path": "rotation" } }));
             samplers.push(json!({ "input": times, "output": output, "extras": { "of": joint } }));
