@@ -268,11 +268,13 @@ mod tests {
     use std::collections::BTreeSet;
     use std::sync::Arc;
 
+    use glam::DVec3;
+
     use super::super::{Memory, SnagKind, View, find_with};
     use super::*;
     use crate::clip::{FrameGrid, JointTracks};
     use crate::rotor::Bivector;
-    use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
+    use crate::skeleton::{Joint, Skeleton};
 
     /// A calm swing with one key changed by `change`.
     fn outline(times: Times, change: impl Fn(usize, Rotor) -> Rotor) -> Outline {
@@ -370,14 +372,7 @@ mod tests {
             keys[key] =
                 keys[key] * Rotor::from_plane_angles(Bivector::new(0.0, f64::to_radians(degrees), 0.0));
         }
-        let joint = Joint {
-            name: "arm".to_owned(),
-            number: 0,
-            parent: None,
-            rest: Transform::IDENTITY,
-            kind: JointKind::Joint,
-            tips: vec![],
-        };
+        let joint = Joint::placed("arm", 0, None, DVec3::ZERO);
         let rotation = Some(RotationTrack::from_rotors(times.clone(), keys));
         Clip {
             name: String::new(),

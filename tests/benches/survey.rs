@@ -18,7 +18,7 @@ use turnwright::exchange::{bvh, disk};
 use turnwright::limit::{LearnOptions, Limits, learned};
 use turnwright::mend::{SurveyOptions, survey};
 use turnwright::rotor::{Axis, EulerOrder};
-use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
+use turnwright::skeleton::{Joint, Skeleton};
 use turnwright::snag::{SnagKind, Unwatched};
 
 const JOINTS: usize = 60;
@@ -139,15 +139,8 @@ fn clip(frames: usize) -> Clip {
     let times = Times::Even { step_secs: 1.0 / 120.0, count: frames };
     let mut noise = 1_u64;
     let joints: Vec<Joint> = (0..JOINTS)
-        .map(|number| Joint {
-            name: format!("joint{number}"),
-            number,
-            parent: number.checked_sub(1),
-            // Its heading is the twist of its limb, so that there are limits of its swing to learn.
-            rest: Transform::from_translation(DVec3::Z),
-            kind: JointKind::Joint,
-            tips: vec![],
-        })
+        // Its heading is the twist of its limb, so that there are limits of its swing to learn.
+        .map(|number| Joint::placed(&format!("joint{number}"), number, number.checked_sub(1), DVec3::Z))
         .collect();
     let tracks = (0..JOINTS).map(|joint| {
         let degrees: Vec<[f64; 3]> = (0..frames)
