@@ -96,22 +96,25 @@ fn rotors<const PROPER: bool>(
     for axis in 0..3 {
         if are_short {
             for row in 0..ROWS {
-                rests[row] = 0.5 * angles[axis][row];
+                rests[row] = 0.25 * angles[axis][row];
                 squares[row] = rests[row] * rests[row];
             }
         } else {
             for row in 0..ROWS {
                 let (rest, sign) = half(angles[axis][row]);
-                rests[row] = rest;
-                squares[row] = rest * rest;
+                rests[row] = 0.5 * rest;
+                squares[row] = rests[row] * rests[row];
                 signs[row] *= sign;
             }
         }
         for row in 0..ROWS {
-            sines[axis][row] = rests[row] * squares[row].sine_over_angle();
+            rests[row] *= squares[row].sine_over_angle();
         }
+        // From a quarter of the angle to its half.
         for row in 0..ROWS {
-            cosines[axis][row] = squares[row].cosine();
+            let twice = rests[row] + rests[row];
+            sines[axis][row] = twice * squares[row].cosine();
+            cosines[axis][row] = 1.0 - twice * rests[row];
         }
     }
     // The sign of the first goes into all parts.

@@ -31,18 +31,18 @@ pub trait Polynomials:
     fn root(self) -> Self;
     fn widened(self) -> f64;
     fn narrowed(value: f64) -> Self;
-    /// Numerator and denominator of `θ²/(1 − d)` of `d = cos θ`, 0 to 1.
-    fn square_over_rest(self) -> (Self, Self);
+    /// Numerator and denominator of `θ/(2 sin θ/2)`, the arc over its chord, of `2 cos θ/2`, √2 to 2.
+    fn arc_over_chord(self) -> (Self, Self);
     /// Numerator and denominator of `θ/sin θ` of `d = cos θ`, 0 to 1.
     fn angle_over_sine(self) -> (Self, Self);
-    /// `sin √y/√y`, 0 to (π/2)².
+    /// `sin √y/√y`, 0 to (π/4)².
     fn sine_over_angle(self) -> Self;
-    /// `cos √y`, 0 to (π/2)².
+    /// `cos √y`, 0 to (π/4)².
     fn cosine(self) -> Self;
 }
 
 macro_rules! polynomials {
-    ($kind:ty, $narrow:expr, $square:ident, $angle:ident, $sine:ident, $cosine:ident) => {
+    ($kind:ty, $narrow:expr, $arc:ident, $angle:ident, $sine:ident, $cosine:ident) => {
         impl Polynomials for $kind {
             const ZERO: Self = 0.0;
             const ONE: Self = 1.0;
@@ -65,8 +65,8 @@ macro_rules! polynomials {
                 ($narrow)(value)
             }
             #[inline(always)]
-            fn square_over_rest(self) -> (Self, Self) {
-                fitted::$square.at(self)
+            fn arc_over_chord(self) -> (Self, Self) {
+                fitted::$arc.at(self)
             }
             #[inline(always)]
             fn angle_over_sine(self) -> (Self, Self) {
@@ -87,7 +87,7 @@ macro_rules! polynomials {
 polynomials!(
     f32,
     |value: f64| value as f32,
-    SQUARE_OVER_REST_F32,
+    ARC_OVER_CHORD_F32,
     ANGLE_OVER_SINE_F32,
     SINE_OVER_ANGLE_F32,
     COSINE_F32
@@ -95,7 +95,7 @@ polynomials!(
 polynomials!(
     f64,
     std::convert::identity,
-    SQUARE_OVER_REST_F64,
+    ARC_OVER_CHORD_F64,
     ANGLE_OVER_SINE_F64,
     SINE_OVER_ANGLE_F64,
     COSINE_F64

@@ -19,8 +19,9 @@ const SQUAD_ROWS: usize = 512;
 /// `t` is a share of the way, 0 to 1. Unlike there the ends are met within that error and not exactly. The rotors are to be
 /// unit within rounding; so is the result.
 ///
-/// With `θ` half the turn and `u = 1 − cos θ`, `θ²/u` is a polynomial in `u`, and `θ/sin θ` and `sin(tθ)/(tθ)` follow from it
-/// without a hard place between 0 and 180°.
+/// Sum and difference of two unit rotors stand at right angles, and the arc lies in their plane. So with `θ` half the turn and `φ = (t − ½)θ` it
+/// is `(a + b) cos φ/(2 cos θ/2) + (b − a) sin φ/(2 sin θ/2)`, where `φ` is at most 45° and nothing has a hard place between
+/// 0 and 180°: short polynomials are enough, and one quotient, that of arc and chord.
 ///
 /// # Panics
 /// When the streams differ in length.
@@ -230,34 +231,37 @@ fn short_way<F: Real>(
     b: [&Column<F, SLERP_ROWS>; 4],
     t: &Column<F, SLERP_ROWS>,
     out: [&mut Column<F, SLERP_ROWS>; 4],
-    [dots, above, below, squares, stretches, from, to]: &mut Desk<F>,
+    [dots, sums, above, below, squares, from, to]: &mut Desk<F>,
 ) {
     for row in 0..SLERP_ROWS {
         dots[row] =
             a[0][row] * b[0][row] + a[1][row] * b[1][row] + a[2][row] * b[2][row] + a[3][row] * b[3][row];
     }
     for row in 0..SLERP_ROWS {
-        (above[row], below[row]) = dots[row].size().square_over_rest();
-    }
-    // θ² and (θ/sin θ)².
-    for row in 0..SLERP_ROWS {
-        let cosine = dots[row].size();
-        let shared = above[row] / (below[row] * (F::ONE + cosine));
-        stretches[row] = shared;
-        squares[row] = shared * (F::ONE + cosine) * (F::ONE - cosine);
+        sums[row] = (F::TWO + F::TWO * dots[row].size()).root();
     }
     for row in 0..SLERP_ROWS {
-        let back = F::ONE - t[row];
-        from[row] = back * (back * back * squares[row]).sine_over_angle();
-        stretches[row] = stretches[row].root();
+        (above[row], below[row]) = sums[row].arc_over_chord();
+    }
+    // One division for both: 1/|a + b|, and the share of the arc that lies beyond its middle, over the chord.
+    for row in 0..SLERP_ROWS {
+        let shared = F::ONE / (sums[row] * below[row]);
+        let beyond = (t[row] - F::HALF) * (above[row] * (sums[row] * shared));
+        from[row] = below[row] * shared;
+        to[row] = beyond;
+        squares[row] = beyond * beyond * (F::TWO - F::TWO * dots[row].size());
     }
     for row in 0..SLERP_ROWS {
-        to[row] = t[row] * (t[row] * t[row] * squares[row]).sine_over_angle();
+        from[row] = from[row] * squares[row].cosine();
     }
     for row in 0..SLERP_ROWS {
-        let stretch = stretches[row];
-        from[row] = from[row] * stretch;
-        to[row] = to[row] * if dots[row] < F::ZERO { -stretch } else { stretch };
+        to[row] = to[row] * squares[row].sine_over_angle();
+    }
+    for row in 0..SLERP_ROWS {
+        let (along, across) = (from[row], to[row]);
+        from[row] = along - across;
+        let far = along + across;
+        to[row] = if dots[row] < F::ZERO { -far } else { far };
     }
     for part in 0..4 {
         for row in 0..SLERP_ROWS {
