@@ -3,7 +3,7 @@
 
 use super::real::Quotient;
 
-/// `sin √y / √y`, 0 ≤ y ≤ (π/4)²: factors of rising powers.
+/// `sin √y / √y`, 0 ≤ y ≤ 0.6169: factors of rising powers.
 pub(super) const SINE_OVER_ANGLE_F64: [f64; 7] = [
     1.0,
     -0.16666666666666666,
@@ -14,10 +14,11 @@ pub(super) const SINE_OVER_ANGLE_F64: [f64; 7] = [
     1.5918129154550544e-10,
 ];
 
-/// `sin √y / √y`, 0 ≤ y ≤ (π/4)²: factors of rising powers.
-pub(super) const SINE_OVER_ANGLE_F32: [f32; 4] = [1.0, -0.16666664, 0.008332748, -0.0001958789];
+/// `sin √y / √y`, 0 ≤ y ≤ 2.467: factors of rising powers.
+pub(super) const SINE_OVER_ANGLE_F32: [f32; 5] =
+    [1.0, -0.16666666, 0.0083332425, -0.0001982274, 2.6347564e-06];
 
-/// `cos √y`, 0 ≤ y ≤ (π/4)²: factors of rising powers.
+/// `cos √y`, 0 ≤ y ≤ 0.6169: factors of rising powers.
 pub(super) const COSINE_F64: [f64; 7] = [
     1.0,
     -0.49999999999999967,
@@ -28,10 +29,10 @@ pub(super) const COSINE_F64: [f64; 7] = [
     2.066550465988738e-09,
 ];
 
-/// `cos √y`, 0 ≤ y ≤ (π/4)²: factors of rising powers.
-pub(super) const COSINE_F32: [f32; 5] = [1.0, -0.5, 0.04166665, -0.0013887589, 2.4463789e-05];
+/// `cos √y`, 0 ≤ y ≤ 2.467: factors of rising powers.
+pub(super) const COSINE_F32: [f32; 6] = [1.0, -0.5, 0.04166666, -0.0013888652, 2.477458e-05, -2.6297516e-07];
 
-/// `atan √y / √y`, 0 ≤ y ≤ tan²(π/8): factors of rising powers.
+/// `atan √y / √y`, 0 ≤ y ≤ 0.1716: factors of rising powers.
 pub(super) const ARC_TANGENT_F64: [f64; 13] = [
     1.0,
     -0.3333333333333333,
@@ -48,7 +49,7 @@ pub(super) const ARC_TANGENT_F64: [f64; 13] = [
     0.01628574303651472,
 ];
 
-/// `θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u ≤ 1: factors of rising powers.
+/// `θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u ≤ 1.0: factors of rising powers.
 pub(super) const MIDDLE_RATE_F64: [f64; 6] = [
     1.0,
     0.08333516435921424,
@@ -58,15 +59,25 @@ pub(super) const MIDDLE_RATE_F64: [f64; 6] = [
     0.002310913866974811,
 ];
 
-/// `θ/(2 sin θ/2)` of `w = 2 cos θ/2`, √2 ≤ w ≤ 2: factors of rising powers above the line, and below it all but the last, which is 1.
-pub(super) const ARC_OVER_CHORD_F64: Quotient<f64, 5, 4> = Quotient {
-    above: [1481.091619520395, 1005.523988554847, 187.9201280489072, 8.96460180074981, 0.023898269388252253],
-    below: [942.8922815210688, 940.267913348683, 301.07017238185347, 34.026312224509965],
-};
+/// `θ/(2 sin θ/2)` of `v = 2 − 2 cos θ/2`, 0 ≤ v ≤ 0.5858: factors of rising powers.
+pub(super) const ARC_OVER_CHORD_F64: [f64; 12] = [
+    1.0,
+    0.1666666666666667,
+    0.03333333333331488,
+    0.007142857144113382,
+    0.0015873015540314253,
+    0.00036075081122810104,
+    8.324653925813563e-05,
+    1.9442304068149153e-05,
+    4.516913474516205e-06,
+    1.1880654512373967e-06,
+    1.324662609861103e-07,
+    1.397673504600763e-07,
+];
 
-/// `θ/(2 sin θ/2)` of `w = 2 cos θ/2`, √2 ≤ w ≤ 2: factors of rising powers above the line, and below it all but the last, which is 1.
-pub(super) const ARC_OVER_CHORD_F32: Quotient<f32, 3, 2> =
-    Quotient { above: [26.572552, 6.622009, 0.07148183], below: [16.919127, 9.591684] };
+/// `θ/(2 sin θ/2)` of `v = 2 − 2 cos θ/2`, 0 ≤ v ≤ 0.5858: factors of rising powers.
+pub(super) const ARC_OVER_CHORD_F32: [f32; 6] =
+    [1.0, 0.16666669, 0.033331964, 0.0071613025, 0.0015019185, 0.0005157761];
 
 /// `θ/sin θ` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
 pub(super) const ANGLE_OVER_SINE_F64: Quotient<f64, 7, 6> = Quotient {

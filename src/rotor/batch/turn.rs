@@ -30,8 +30,7 @@ pub fn turns<F: Real>(level: Level, a: Parts<'_, F, 4>, b: Parts<'_, F, 4>, out:
                     }
                     // R and −R are one rotation. What lies between the nearer two is the chord, and their sum stands across it.
                     let (chord, sum) = if sum < apart { (sum, apart) } else { (apart, sum) };
-                    let (above, below) = sum.root().arc_over_chord();
-                    [F::TWO * chord.root() * above / below]
+                    [F::TWO * chord.root() * (F::TWO - sum.root()).arc_over_chord()]
                 },
             );
         },
