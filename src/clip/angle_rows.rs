@@ -78,17 +78,15 @@ impl AngleRows {
 
     /// Adds `count` rows: `row` gives the angles in degrees of each, in the order of the axes; beyond these they are 0.
     pub fn push(&mut self, count: usize, row: impl Fn(usize) -> [f64; 3], scratch: &mut AngleScratch) {
+        let mut room = std::mem::take(&mut scratch.degrees);
         for start in (0..count).step_by(TILE) {
             let length = TILE.min(count - start);
-            let mut tile = std::mem::take(&mut scratch.degrees);
-            tile.clear();
-            tile.extend((start..start + length).map(&row));
-            self.degrees.extend(&tile);
-            if self.makes_rotors() {
-                self.rotors.push(&tile, scratch);
+            let tile = self.degrees.extend_with(length, |index| row(start + index), &mut room);
+            if self.axes.len() > 2 {
+                self.rotors.push(tile, scratch);
             }
-            scratch.degrees = tile;
         }
+        scratch.degrees = room;
     }
 
     /// Bytes that a row takes more once the track is played at many times.
@@ -174,10 +172,8 @@ fn rotors_of<'s>(
 ) -> Parts<'s, f64, 4> {
     let length = degrees.len();
     let [first, second, third] = scratch.radians.parts_mut().map(|stream| &mut stream[..length]);
-    for (index, angles) in degrees.iter().enumerate() {
-        first[index] = angles[0].to_radians();
-        second[index] = angles[1].to_radians();
-        third[index] = angles[2].to_radians();
+    for (((first, second), third), angles) in first.iter_mut().zip(second).zip(third).zip(degrees) {
+        [*first, *second, *third] = angles.map(f64::to_radians);
     }
     let radians = scratch.radians.parts().map(|stream| &stream[..length]);
     let rotors = scratch.rotors.parts_mut().map(|stream| &mut stream[..length]);
@@ -204,6 +200,42 @@ fn sign_near(rotor: Rotor, before: &mut Before) -> f64 {
     own
 }
 
+/// [`sign_near`] of at most [`TILE`] rotors in a row.
+fn signs_near(level: Level, rotors: Parts<'_, f64, 4>, before: &mut Before, signs: &mut [f64]) {
+    let count = signs.len();
+    let (mut dots, mut are_finite) = ([0.0; TILE], true);
+    level.run(
+        #[inline(always)]
+        || {
+            let [s, yz, zx, xy] = rotors.map(|part| &part[..count]);
+            for part in [s, yz, zx, xy] {
+                are_finite &= part.iter().fold(true, |all, part| all & (part.abs() <= f64::MAX));
+            }
+            // As `Rotor::dot`.
+            for (index, dot) in dots[..count].iter_mut().enumerate().skip(1) {
+                *dot = s[index] * s[index - 1]
+                    + yz[index] * yz[index - 1]
+                    + zx[index] * zx[index - 1]
+                    + xy[index] * xy[index - 1];
+            }
+        },
+    );
+    if !are_finite || count == 0 {
+        for (index, sign) in signs.iter_mut().enumerate() {
+            *sign = sign_near(rotor_at(rotors, index), before);
+        }
+        return;
+    }
+    dots[0] = rotor_at(rotors, 0).dot(before.0);
+    let mut is_minus = before.1 < 0.0;
+    for (sign, &dot) in signs.iter_mut().zip(&dots) {
+        // A dot product of 0 gives a plus. Both are asked, so that nothing is left to guess.
+        is_minus = (is_minus & (dot > 0.0)) | (!is_minus & (dot < 0.0));
+        *sign = if is_minus { -1.0 } else { 1.0 };
+    }
+    *before = (rotor_at(rotors, count - 1), signs[count - 1]);
+}
+
 #[derive(Clone, Debug)]
 struct RotorRows {
     order: EulerOrder,
@@ -222,13 +254,14 @@ impl RotorRows {
 
     /// Adds at most [`TILE`] rows.
     fn push(&mut self, degrees: &[[f64; 3]], scratch: &mut AngleScratch) {
+        let level = scratch.level;
         let rotors = rotors_of(self.order, degrees, scratch);
-        let mut before = self.before;
-        self.keys.extend((0..degrees.len()).map(|index| {
-            let rotor = rotor_at(rotors, index);
-            rotor.scale(sign_near(rotor, &mut before))
-        }));
-        self.before = before;
+        let mut signs = [1.0; TILE];
+        let signs = &mut signs[..degrees.len()];
+        signs_near(level, rotors, &mut self.before, signs);
+        let [s, yz, zx, xy] = rotors;
+        let parts = s.iter().zip(yz).zip(zx.iter().zip(xy)).zip(&*signs);
+        self.keys.extend(parts.map(|(((s, yz), (zx, xy)), sign)| Rotor::new(*s, *yz, *zx, *xy).scale(*sign)));
     }
 
     fn finish(mut self) -> Vec<Rotor> {

@@ -13,11 +13,11 @@ pub struct Degrees(Arc<Inner>);
 
 struct Inner {
     held: Held,
-    triples: OnceLock<Arc<[[f64; 3]]>>,
+    triples: OnceLock<Vec<[f64; 3]>>,
 }
 
 enum Held {
-    Triples(Arc<[[f64; 3]]>),
+    Triples(Vec<[f64; 3]>),
     Whole { axes: usize, numbers: Vec<i16> },
     Few { axes: usize, numbers: Vec<f64> },
 }
@@ -62,16 +62,16 @@ impl Degrees {
         }
     }
 
-    /// All triples, shared with whoever else holds them.
-    pub fn into_triples(self) -> Arc<[[f64; 3]]> {
-        let inner = match Arc::try_unwrap(self.0) {
-            Ok(Inner { held: Held::Triples(triples), .. }) => return triples,
-            Ok(other) => Self(Arc::new(other)),
-            Err(shared) => Self(shared),
-        };
-        match &inner.0.held {
-            Held::Triples(triples) => triples.clone(),
-            Held::Whole { .. } | Held::Few { .. } => inner.iter().copied().collect(),
+    /// All triples, to be changed: copied first where somebody else has them too.
+    pub fn make_mut(&mut self) -> &mut [[f64; 3]] {
+        let is_own = Arc::get_mut(&mut self.0).is_some_and(|own| matches!(own.held, Held::Triples(_)));
+        if !is_own {
+            *self = (0..self.len()).map(|key| self.triple(key)).collect();
+        }
+        match Arc::get_mut(&mut self.0) {
+            Some(Inner { held: Held::Triples(triples), .. }) => triples,
+            // Just made its own.
+            _ => &mut [],
         }
     }
 
@@ -102,15 +102,9 @@ impl Deref for Degrees {
     }
 }
 
-impl From<Arc<[[f64; 3]]>> for Degrees {
-    fn from(triples: Arc<[[f64; 3]]>) -> Self {
-        Self::of(Held::Triples(triples))
-    }
-}
-
 impl From<Vec<[f64; 3]>> for Degrees {
     fn from(triples: Vec<[f64; 3]>) -> Self {
-        Self::of(Held::Triples(triples.into()))
+        Self::of(Held::Triples(triples))
     }
 }
 
@@ -156,7 +150,7 @@ pub(super) struct GrowingDegrees {
 enum GrowingHeld {
     Whole(Vec<i16>),
     Few(Vec<f64>),
-    Triples(Growing<[f64; 3]>),
+    Triples(Vec<[f64; 3]>),
 }
 
 impl GrowingDegrees {
@@ -202,7 +196,30 @@ impl GrowingDegrees {
         match &mut self.held {
             GrowingHeld::Whole(own) => own.reserve_exact(numbers.saturating_sub(own.len())),
             GrowingHeld::Few(own) => own.reserve_exact(numbers.saturating_sub(own.len())),
-            GrowingHeld::Triples(own) => own.reserve(self.capacity),
+            GrowingHeld::Triples(own) => own.reserve_exact(self.capacity.saturating_sub(own.len())),
+        }
+    }
+
+    /// Adds `count` triples, each as `triple` makes it, and gives them back; beyond the axes they are 0. Those that are not held as
+    /// such lie in `room`.
+    pub(super) fn extend_with<'own>(
+        &'own mut self,
+        count: usize,
+        triple: impl Fn(usize) -> [f64; 3],
+        room: &'own mut Vec<[f64; 3]>,
+    ) -> &'own [[f64; 3]] {
+        match self.held {
+            GrowingHeld::Triples(ref mut own) => {
+                let start = own.len();
+                own.extend((0..count).map(triple));
+                &own[start..]
+            }
+            GrowingHeld::Whole(_) | GrowingHeld::Few(_) => {
+                room.clear();
+                room.extend((0..count).map(triple));
+                self.extend(room);
+                room
+            }
         }
     }
 
@@ -212,17 +229,15 @@ impl GrowingDegrees {
         if let GrowingHeld::Whole(numbers) = &self.held
             && triples.iter().flat_map(|triple| &triple[..axes]).any(|&angle| whole(angle).is_none())
         {
-            let before = numbers.iter().map(|&number| f64::from(number));
             self.held = if axes == 3 {
                 let count = numbers.len() / axes;
-                let mut own = Growing::new([0.0; 3], self.capacity.max(count));
-                for (triple, old) in own.next(count).iter_mut().zip(numbers.chunks_exact(axes)) {
-                    *triple = filled_up(old.iter().map(|&number| f64::from(number)));
-                }
+                let mut own = Vec::with_capacity(self.capacity.max(count));
+                let triple = |old: &[i16]| filled_up(old.iter().map(|&number| f64::from(number)));
+                own.extend(numbers.chunks_exact(axes).map(triple));
                 GrowingHeld::Triples(own)
             } else {
                 let mut own = Vec::with_capacity(self.capacity * axes);
-                own.extend(before);
+                own.extend(numbers.iter().map(|&number| f64::from(number)));
                 GrowingHeld::Few(own)
             };
         }
@@ -234,7 +249,7 @@ impl GrowingDegrees {
                 numbers.extend(triples.iter().flat_map(|triple| &triple[..axes]).copied().filter_map(whole));
             }
             GrowingHeld::Few(numbers) => numbers.extend(triples.iter().flat_map(|triple| &triple[..axes])),
-            GrowingHeld::Triples(own) => own.next(triples.len()).copy_from_slice(triples),
+            GrowingHeld::Triples(own) => own.extend_from_slice(triples),
         }
     }
 
@@ -250,7 +265,10 @@ impl GrowingDegrees {
                 give_back(&mut numbers);
                 Held::Few { axes, numbers }
             }
-            GrowingHeld::Triples(triples) => Held::Triples(triples.finish()),
+            GrowingHeld::Triples(mut triples) => {
+                give_back(&mut triples);
+                Held::Triples(triples)
+            }
         })
     }
 }
@@ -330,8 +348,11 @@ mod tests {
     fn check(axes: usize, triples: &[[f64; 3]], held: usize) {
         for portion in [1, 3, 64] {
             let mut growing = GrowingDegrees::new(axes, 0);
+            let mut room = Vec::new();
             growing.reserve(triples.len());
-            triples.chunks(portion).for_each(|part| growing.extend(part));
+            for part in triples.chunks(portion) {
+                assert_eq!(growing.extend_with(part.len(), |key| part[key], &mut room).len(), part.len());
+            }
             assert_eq!(growing.bytes(), held * triples.len());
             let degrees = growing.finish();
             assert_eq!(degrees.len(), triples.len());
@@ -341,6 +362,22 @@ mod tests {
                 assert_eq!(bits(degrees[key]), bits(*own), "key {key} in portions of {portion}");
             }
         }
+    }
+
+    #[test]
+    fn a_change_is_seen_by_its_owner_alone() {
+        let mut growing = GrowingDegrees::new(2, 0);
+        growing.extend(&[[5.0, 6.0, 0.0], [7.0, 8.0, 0.0]]);
+        let few = growing.finish();
+        let mut own = few.clone();
+        own.make_mut()[1][0] = 9.5;
+        assert_eq!((few[1], own[1]), ([7.0, 8.0, 0.0], [9.5, 8.0, 0.0]));
+        let place = own.as_ptr();
+        own.make_mut()[0][0] = -0.0;
+        assert_eq!(own.as_ptr(), place, "nobody else has it: changed in place");
+        let shared = own.clone();
+        own.make_mut()[0][0] = 1.0;
+        assert!(shared[0][0].is_sign_negative() && own[0][0] == 1.0 && own.as_ptr() != place);
     }
 
     #[test]

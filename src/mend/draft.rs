@@ -3,7 +3,7 @@
 use std::ops::{Deref, DerefMut, Range};
 use std::sync::Arc;
 
-use crate::clip::{FileAngles, Keys, PathKind, Paths, RotationTrack, Segments, Stored, Times};
+use crate::clip::{Degrees, FileAngles, Keys, PathKind, Paths, RotationTrack, Segments, Stored, Times};
 use crate::rotor::{Axis, Bivector, EulerOrder, Rotor};
 use crate::snag::nearest_plane_angles;
 
@@ -11,7 +11,7 @@ use crate::snag::nearest_plane_angles;
 #[derive(Clone, Debug)]
 pub(super) enum Form {
     Rotors,
-    Angles { axes: Vec<Axis>, order: EulerOrder, degrees: Arc<[[f64; 3]]> },
+    Angles { axes: Vec<Axis>, order: EulerOrder, degrees: Degrees },
     PlaneAngles(Arc<[[f64; 3]]>),
 }
 
@@ -72,9 +72,7 @@ impl Draft {
     pub(super) fn of(track: RotationTrack) -> Self {
         let form = match track.stored {
             Stored::Rotors => Form::Rotors,
-            Stored::Angles(FileAngles { axes, order, degrees }) => {
-                Form::Angles { axes, order, degrees: degrees.into_triples() }
-            }
+            Stored::Angles(FileAngles { axes, order, degrees }) => Form::Angles { axes, order, degrees },
             Stored::PlaneAngles(degrees) => Form::PlaneAngles(degrees),
         };
         Self {
@@ -101,9 +99,7 @@ impl Draft {
         touched.sort_by_key(|run| run.start);
         let stored = match self.form {
             Form::Rotors => Stored::Rotors,
-            Form::Angles { axes, order, degrees } => {
-                Stored::Angles(FileAngles { axes, order, degrees: degrees.into() })
-            }
+            Form::Angles { axes, order, degrees } => Stored::Angles(FileAngles { axes, order, degrees }),
             Form::PlaneAngles(degrees) => Stored::PlaneAngles(degrees),
         };
         let keys = match self.keys {
@@ -176,10 +172,12 @@ impl Draft {
 
     /// Other angles for the same orientation; the rotor stays as it is.
     pub(super) fn set_angles(&mut self, key: usize, triple: [f64; 3]) {
-        if let Form::Angles { degrees, .. } | Form::PlaneAngles(degrees) = &mut self.form {
-            Arc::make_mut(degrees)[key] = triple;
-            self.is_changed = true;
+        match &mut self.form {
+            Form::Rotors => return,
+            Form::Angles { degrees, .. } => degrees.make_mut()[key] = triple,
+            Form::PlaneAngles(degrees) => Arc::make_mut(degrees)[key] = triple,
         }
+        self.is_changed = true;
     }
 
     /// Adds `step` to one of the file angles of some keys, `times` times, as if each sum were rounded.
@@ -190,7 +188,7 @@ impl Draft {
         /// Keys that are gone over together.
         const TILE: usize = 64;
         let Form::Angles { degrees, .. } = &mut self.form else { return };
-        let rows = &mut Arc::make_mut(degrees)[keys];
+        let rows = &mut degrees.make_mut()[keys];
         let largest = rows.iter().map(|row| row[channel].abs()).fold(0.0, f64::max);
         let mut strides: Vec<f64> = Vec::new();
         let mut done = 0;
@@ -238,7 +236,7 @@ impl Draft {
                     triple[axes.len()..].fill(0.0);
                     rotor = order.to_rotor(triple).aligned_to(rotor);
                 }
-                Arc::make_mut(degrees)[key] = triple.map(f64::to_degrees);
+                degrees.make_mut()[key] = triple.map(f64::to_degrees);
             }
             Form::PlaneAngles(degrees) => {
                 let near = Bivector::from_degrees(finite_or_zero(degrees[near]));

@@ -2,7 +2,6 @@
 
 use std::f64::consts::TAU;
 use std::ops::Range;
-use std::sync::Arc;
 
 use crate::rotor::{Bivector, EndRates, Rotor, parabola_rate};
 
@@ -354,13 +353,13 @@ impl Stored {
 
     /// Of some keys alone.
     pub(in super::super) fn only(&self, keys: &[usize]) -> Self {
-        let only = |degrees: &[[f64; 3]]| keys.iter().map(|&key| degrees[key]).collect::<Arc<[_]>>();
+        let only = |degrees: &[[f64; 3]]| keys.iter().map(|&key| degrees[key]).collect::<Vec<_>>();
         match self {
             Self::Rotors => Self::Rotors,
             Self::Angles(angles) => {
                 Self::Angles(FileAngles { degrees: only(&angles.degrees).into(), ..angles.clone() })
             }
-            Self::PlaneAngles(degrees) => Self::PlaneAngles(only(degrees)),
+            Self::PlaneAngles(degrees) => Self::PlaneAngles(only(degrees).into()),
         }
     }
 }

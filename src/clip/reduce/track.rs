@@ -118,13 +118,15 @@ impl RotationTrack {
         // A key between two of the file's has no triple of its own.
         let all_own: Option<Vec<usize>> = own.into_iter().collect();
         let chosen = |all: &[[f64; 3]]| {
-            all_own.as_ref().map(|own| own.iter().map(|&key| all[key]).collect::<Arc<[_]>>())
+            all_own.as_ref().map(|own| own.iter().map(|&key| all[key]).collect::<Vec<_>>())
         };
         let stored = match &self.stored {
             Stored::Rotors => None,
             Stored::Angles(angles) => chosen(&angles.degrees)
                 .map(|degrees| Stored::Angles(FileAngles { degrees: degrees.into(), ..angles.clone() })),
-            Stored::PlaneAngles(degrees) => chosen(degrees).map(Stored::PlaneAngles),
+            Stored::PlaneAngles(degrees) => {
+                chosen(degrees).map(|degrees| Stored::PlaneAngles(degrees.into()))
+            }
         };
         Self {
             times: Times::Listed(times.into()),
