@@ -15,11 +15,14 @@ use super::super::commands::Action;
 use super::super::pictures::RowsKey;
 use super::super::theme::{GUTTER_WIDTH, INSET, RULER_HEIGHT, TIME_MARGIN};
 use super::super::view_models::{HeatMap, MapRow, map_rows, ticks};
-use super::super::widgets::{TimeAxis, hint, playhead, scrub_and_zoom, segment, strip};
+use super::super::widgets::{TimeAxis, hint, playhead, scrub_and_zoom, segment, segments, strip};
 use super::Scope;
 use crate::clip::Clip;
 
 const ROW_HEIGHTS: [f32; 2] = [16.0, 24.0];
+
+/// Folding and the order of rows, and a list of what colours may show, need so many points in the strip.
+const ROOM_FOR_SWITCHES: f32 = 250.0;
 
 /// The panel.
 pub(crate) fn turn_map_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
@@ -29,12 +32,18 @@ pub(crate) fn turn_map_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
             legend::legend(ui, &scope.look, heat);
             ui.add_space(12.0);
         }
-        segment(ui, "Worst first", Action::WorstFirst, scope.now, scope.out);
-        fold_switch(ui, scope);
-        ui.add_space(8.0);
-        segment(ui, "Limits", Action::HeatLimitUse, scope.now, scope.out);
-        segment(ui, "Change", Action::HeatChange, scope.now, scope.out);
-        segment(ui, "Turn rate", Action::HeatTurnRate, scope.now, scope.out);
+        // Where there is little room these two are left to the menu.
+        if ui.available_width() > ROOM_FOR_SWITCHES {
+            segment(ui, "Worst first", Action::WorstFirst, scope.now, scope.out);
+            fold_switch(ui, scope);
+            ui.add_space(8.0);
+        }
+        let colours = [
+            ("Turn rate", Action::HeatTurnRate),
+            ("Change", Action::HeatChange),
+            ("Limits", Action::HeatLimitUse),
+        ];
+        segments(ui, "What colours show", &colours, scope.now, scope.out);
     });
     let Some(clip) = scope.bench.result().cloned() else {
         hint(ui, "No clip");
@@ -88,14 +97,25 @@ fn ruler_ui(ui: &mut Ui, ruler: Rect, axis: &TimeAxis, clip: &Clip, scope: &mut 
     let left = ruler.left() + INSET;
     painter.text(pos2(left, ruler.top() + 9.0), Align2::LEFT_CENTER, "time", font.clone(), look.faint);
     painter.text(pos2(left, ruler.top() + 21.0), Align2::LEFT_CENTER, "frame", font.clone(), look.faint);
+    // Where one frame takes several marks it is written once.
+    let mut last_frame = String::new();
     for tick in ticks(axis.window, &clip.grid, f64::from(axis.span.span())) {
         let x = axis.x(tick.secs);
-        match &tick.label {
+        match tick.label {
             Some([secs, frame]) => {
                 painter.vline(x, ruler.top() + 4.0..=ruler.bottom(), (1.0, look.axis));
-                let at = |y: f32| pos2(x + 4.0, ruler.top() + y);
-                painter.text(at(9.0), Align2::LEFT_CENTER, secs, font.clone(), look.text);
-                painter.text(at(21.0), Align2::LEFT_CENTER, frame, font.clone(), look.faint);
+                let own = painter.layout_no_wrap(secs, font.clone(), look.text);
+                // At the right end words stand before their mark, so that they are whole.
+                let is_before = x + 4.0 + own.size().x > ruler.right();
+                let (side, align) =
+                    if is_before { (x - 4.0, Align2::RIGHT_CENTER) } else { (x + 4.0, Align2::LEFT_CENTER) };
+                let at = align.anchor_size(pos2(side, ruler.top() + 9.0), own.size());
+                painter.galley(at.min, own, look.text);
+                if frame != last_frame {
+                    let at = pos2(side, ruler.top() + 21.0);
+                    painter.text(at, align, &frame, font.clone(), look.faint);
+                    last_frame = frame;
+                }
             }
             None => {
                 painter.vline(x, ruler.bottom() - 5.0..=ruler.bottom(), (1.0, look.line));
