@@ -50,12 +50,45 @@ impl SourceState {
 pub struct Evaluated {
     /// The passes that were run.
     pub passes: Vec<Pass>,
-    /// The other clips whose results they needed.
-    pub behind: Vec<WorkBehind>,
+    /// What else they needed.
+    pub behind: Behind,
     /// What they gave.
     pub evaluation: Arc<Evaluation>,
     /// Their sum in a few numbers.
     pub changes: Changes,
+}
+
+/// What a work's result hangs on beside its own clip and passes.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Behind {
+    /// Other clips, by rising work.
+    pub works: Vec<WorkBehind>,
+    /// Skeletons that clips are carried to, by rising source. Another rest pose makes another one.
+    pub skeletons: Vec<SkeletonBehind>,
+}
+
+/// A skeleton that a clip is carried to.
+#[derive(Clone, Debug)]
+pub struct SkeletonBehind {
+    /// Of which source.
+    pub source: usize,
+    /// As it is measured now, if the file is open.
+    pub skeleton: Option<Arc<Skeleton>>,
+}
+
+impl PartialEq for SkeletonBehind {
+    fn eq(&self, other: &Self) -> bool {
+        self.source == other.source && is_same(self.skeleton.as_ref(), other.skeleton.as_ref())
+    }
+}
+
+/// Whether both are the very same.
+pub(super) fn is_same<T>(a: Option<&Arc<T>>, b: Option<&Arc<T>>) -> bool {
+    match (a, b) {
+        (Some(a), Some(b)) => Arc::ptr_eq(a, b),
+        (None, None) => true,
+        _ => false,
+    }
 }
 
 /// A clip that another one's result hangs on: as its file was read, and what is done to it.
@@ -71,11 +104,7 @@ pub struct WorkBehind {
 
 impl PartialEq for WorkBehind {
     fn eq(&self, other: &Self) -> bool {
-        let same_source = match (&self.source, &other.source) {
-            (Some(own), Some(others)) => Arc::ptr_eq(own, others),
-            (None, None) => true,
-            _ => false,
-        };
+        let same_source = is_same(self.source.as_ref(), other.source.as_ref());
         same_source && self.work == other.work && self.passes == other.passes
     }
 }
@@ -124,6 +153,14 @@ pub struct Project {
     pub scene_path: Option<PathBuf>,
     /// For each clip's work.
     pub findings: Vec<Findings>,
+    /// Files as they were read before, or will be again: undo and redo change one for another.
+    pub other_readings: Vec<Arc<Source>>,
+}
+
+/// Whether a file was read as the document says, its rest pose aside.
+fn is_read_as(source: &Source, known: &SourceRef) -> bool {
+    let (own, said) = (&source.reading, &known.reading);
+    source.path == known.path && own.skeleton == said.skeleton && source.sha256() == known.sha256
 }
 
 impl Project {
@@ -151,14 +188,24 @@ impl Project {
         scene_path: Option<PathBuf>,
     ) -> Self {
         let findings = document.works.iter().map(|_| Findings::default()).collect();
-        Self { serial, history: History::new(document), sources, scene_path, findings }
+        let history = History::new(document);
+        Self { serial, history, sources, scene_path, findings, other_readings: Vec::new() }
     }
 
-    /// Measures each file's clips from the rest pose that the document says.
-    pub fn follow_readings(&mut self) {
+    /// Brings each file in line with what the document says of it: in which of the ways that it has been read, and from which rest pose
+    /// its clips are measured. Gives the files whose joints are others now; of their clips nothing is known.
+    pub fn follow_readings(&mut self) -> Vec<usize> {
         let document = Arc::clone(self.document());
-        for (state, known) in self.sources.iter_mut().zip(&document.sources) {
+        let mut others = Vec::new();
+        for (index, (state, known)) in self.sources.iter_mut().zip(&document.sources).enumerate() {
             let (SourceState::Ready(source) | SourceState::Changed(source)) = state else { continue };
+            let mut readings = self.other_readings.iter_mut();
+            if !is_read_as(source, known)
+                && let Some(other) = readings.find(|other| is_read_as(other, known))
+            {
+                std::mem::swap(source, other);
+                others.push(index);
+            }
             let wanted = known.reading.rest;
             if source.reading.rest != wanted
                 && let Some(other) = source.with_rest(wanted)
@@ -166,6 +213,12 @@ impl Project {
                 *source = Arc::new(other);
             }
         }
+        for (work, findings) in document.works.iter().zip(&mut self.findings) {
+            if others.contains(&work.source) {
+                *findings = Findings::default();
+            }
+        }
+        others
     }
 
     /// The file of the clip on show.
@@ -194,15 +247,20 @@ impl Project {
         Library::new(Arc::clone(self.document()), sources).with_evaluators(evaluators)
     }
 
-    /// The other clips that a work's result hangs on, by rising work.
-    pub fn works_behind(&self, work: usize) -> Vec<WorkBehind> {
+    /// What a work's result hangs on beside its own clip and passes.
+    pub fn behind(&self, work: usize) -> Behind {
         let document = self.document();
+        let skeleton = |source: usize| SkeletonBehind {
+            source,
+            skeleton: self.sources.get(source).and_then(|state| state.source()?.skeleton()),
+        };
+        let skeletons = document.skeletons_behind(work).into_iter().map(skeleton).collect();
         let behind = |work: usize| WorkBehind {
             work,
             source: self.source_clip(work).cloned(),
             passes: document.works[work].passes.clone(),
         };
-        document.leans_on(work).into_iter().map(behind).collect()
+        Behind { works: document.leans_on(work).into_iter().map(behind).collect(), skeletons }
     }
 
     /// The result of a work as far as it is known: until passes have been run, what they gave before.
@@ -307,11 +365,7 @@ struct SnagKey {
 
 impl PartialEq for SnagKey {
     fn eq(&self, other: &Self) -> bool {
-        let same_snags = match (&self.snags, &other.snags) {
-            (Some(own), Some(others)) => Arc::ptr_eq(own, others),
-            (None, None) => true,
-            _ => false,
-        };
+        let same_snags = is_same(self.snags.as_ref(), other.snags.as_ref());
         same_snags && self.work == other.work && self.revision == other.revision
     }
 }
@@ -503,6 +557,11 @@ impl Bench {
                 .as_ref()
                 .is_some_and(|project| project.document().works.len() > 1),
             has_trouble: self.project.as_ref().is_some_and(|project| project.trouble().is_some()),
+            has_table: self
+                .project
+                .as_ref()
+                .and_then(|project| project.source_of(session.work))
+                .is_some_and(|source| source.takes_skeleton()),
             undo: history.and_then(|history| history.undo_label()).map(str::to_owned),
             redo: history.and_then(|history| history.redo_label()).map(str::to_owned),
             has_joint: session.joint.is_some(),

@@ -5,7 +5,7 @@ use std::sync::Arc;
 use crate::clip::Clip;
 use crate::scene::{BlendPass, Pass, PassId, PassStep};
 
-use super::bench::{Bench, WorkBehind};
+use super::bench::{Behind, Bench};
 use super::view_models::BlendFacts;
 
 /// How the blend lane is set.
@@ -44,8 +44,8 @@ impl BlendHabits {
 pub struct BlendKey {
     /// The clip that the pass gets.
     pub first: Arc<Clip>,
-    /// The other clips that are blended in, and those that they need.
-    pub behind: Vec<WorkBehind>,
+    /// The other clips that are blended in, and what they need.
+    pub behind: Behind,
     /// The pass.
     pub pass: BlendPass,
 }

@@ -7,7 +7,7 @@ use crate::retarget::Report;
 use crate::scene::{PassId, PassStep, RetargetPass};
 use crate::skeleton::Skeleton;
 
-use super::bench::Bench;
+use super::bench::{Bench, is_same};
 use super::logic::retarget_in;
 use super::view_models::{BarMark, CarryEye, CarryFacts, Lane};
 
@@ -50,11 +50,7 @@ pub struct CarryKey {
 
 impl PartialEq for CarryKey {
     fn eq(&self, other: &Self) -> bool {
-        let same_skeleton = match (&self.skeleton, &other.skeleton) {
-            (Some(a), Some(b)) => Arc::ptr_eq(a, b),
-            (None, None) => true,
-            _ => false,
-        };
+        let same_skeleton = is_same(self.skeleton.as_ref(), other.skeleton.as_ref());
         Arc::ptr_eq(&self.clip, &other.clip) && same_skeleton && self.pass == other.pass
     }
 }

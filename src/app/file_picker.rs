@@ -23,6 +23,8 @@ pub enum Purpose {
     Relocate,
     /// To read limits from.
     Limits,
+    /// To take the skeleton of a table from.
+    Skeleton,
     /// To take the second clip of a blend from.
     Second,
     /// A file of a retarget.
@@ -116,6 +118,10 @@ fn dialog(purpose: Purpose, suggestion: &Path) -> Vec<PathBuf> {
         }
         Purpose::Limits => {
             let dialog = dialog.set_title("Limits from a file").add_filter("Limits", &["csv", "ron"]);
+            wait_for(dialog.pick_file()).into_iter().map(paths).collect()
+        }
+        Purpose::Skeleton => {
+            let dialog = dialog.set_title("Skeleton of a table").add_filter("Files with joints", &clips);
             wait_for(dialog.pick_file()).into_iter().map(paths).collect()
         }
         Purpose::Second => {

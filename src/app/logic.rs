@@ -92,6 +92,7 @@ impl Window {
             Command::SaveTo(path) => self.save_to(path),
             Command::ExportTo { path, has_proof } => self.export_to(path, has_proof),
             Command::RelocateTo(source, path) => self.relocate_to(source, path),
+            Command::UseSkeleton(path) => self.use_skeleton(path),
             Command::ChooseRest(rest) => {
                 if let Some(source) = self.bench.work().map(|work| work.source) {
                     self.edit(&Edit::ChooseRest { source, rest: Some(rest) });
@@ -132,6 +133,7 @@ impl Window {
             A::SaveAs => self.ask_where_to_save(),
             A::Export => self.ask_where_to_export(),
             A::Relocate => self.ask_for_source(),
+            A::TableSkeleton => self.ask_for_skeleton(),
             A::Quit => {
                 if super::Screen::close_requested(self) {
                     self.should_close = true;
@@ -265,8 +267,15 @@ impl Window {
 
     /// Brings the open files in line with what the document says of them.
     fn follow_document(&mut self) {
-        if let Some(project) = &mut self.bench.project {
-            project.follow_readings();
+        let chosen = self.chosen_label();
+        let Some(project) = &mut self.bench.project else { return };
+        let others = project.follow_readings();
+        let is_shown = self.bench.work().is_some_and(|work| others.contains(&work.source));
+        if !others.is_empty() {
+            self.asked.survey = None;
+        }
+        if is_shown {
+            self.show_other_joints(chosen.map(|(_, label)| label));
         }
     }
 

@@ -294,6 +294,11 @@ impl Source {
         })
     }
 
+    /// Whether its skeleton can be taken from another file: it is a table that brings none along.
+    pub fn takes_skeleton(&self) -> bool {
+        matches!(&self.origin, Origin::Csv(document) if !document.has_skeleton())
+    }
+
     /// What a clip is called in lists: its name, or `#INDEX` where it has none.
     pub fn clip_label(&self, index: usize) -> String {
         match self.clips.get(index).map(|clip| clip.name.as_str()) {

@@ -6,6 +6,7 @@ use glam::{DVec2, DVec3, Vec2};
 
 use crate::raster::camera::{Ray, View};
 use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke};
+use crate::raster::names::Words;
 use crate::raster::palette::{Color, Theme};
 use crate::raster::text::{Align, TextStyle, draw_text_centered, text_width};
 
@@ -165,23 +166,47 @@ fn draw_waiting(canvas: &mut Canvas, view: &View, disc: &PlaneDisc, rim: &[DVec3
     }
 }
 
+/// Size of a grip's letters, points.
+const KNOB_LETTERS: f32 = 12.5;
+
+impl Knob {
+    /// Points.
+    fn radius(&self) -> f32 {
+        if self.is_ready { 6.5 } else { 5.0 }
+    }
+}
+
+/// Where a grip's letters stand: beyond its dot, as seen from what it turns about.
+fn letters_of(view: &View, knob: &Knob, scale: f32) -> Option<Words> {
+    let spot = Spot::of(view, knob.at).filter(|_| !knob.letters.is_empty())?;
+    let middle = Spot::of(view, knob.away_from).map_or(spot.pixel, |middle| middle.pixel);
+    let away = (spot.pixel - middle).normalize_or(Vec2::NEG_Y);
+    let style = TextStyle::words(KNOB_LETTERS * scale, Color::TRANSPARENT);
+    let half = Vec2::new(text_width(&knob.letters, &style) / 2.0, 6.0 * scale);
+    Some(Words {
+        middle: spot.pixel + away * (knob.radius() * scale + 4.0 * scale + half.dot(away.abs())),
+        half,
+    })
+}
+
+/// The room that a grip takes: its dot, and its letters.
+pub(super) fn room_of_knob(view: &View, knob: &Knob, scale: f32) -> impl Iterator<Item = Words> + use<> {
+    let dot = Spot::of(view, knob.at);
+    let dot = dot.map(|spot| Words { middle: spot.pixel, half: Vec2::splat((knob.radius() + 1.5) * scale) });
+    dot.into_iter().chain(letters_of(view, knob, scale))
+}
+
 /// Draws a grip over everything.
 pub(super) fn draw_knob(canvas: &mut Canvas, view: &View, knob: &Knob, theme: &Theme, scale: f32) {
     let Some(spot) = Spot::of(view, knob.at) else { return };
-    let radius = if knob.is_ready { 6.5 } else { 5.0 } * scale;
+    let radius = knob.radius() * scale;
     canvas.flat_dot(spot.pixel, radius + 1.5 * scale, theme.background.with_alpha(0.75));
     canvas.flat_dot(spot.pixel, radius, knob.color);
     if knob.is_ready {
         canvas.flat_ring(spot.pixel, radius + 2.5 * scale, 1.5 * scale, theme.text);
     }
-    if knob.letters.is_empty() {
-        return;
-    }
-    let middle = Spot::of(view, knob.away_from).map_or(spot.pixel, |middle| middle.pixel);
-    let away = (spot.pixel - middle).normalize_or(Vec2::NEG_Y);
-    let style = TextStyle::words(12.5 * scale, theme.text).aligned(Align::Center);
-    let half = Vec2::new(text_width(&knob.letters, &style) / 2.0, 6.0 * scale);
-    let at = spot.pixel + away * (radius + 4.0 * scale + half.dot(away.abs()));
+    let Some(Words { middle: at, .. }) = letters_of(view, knob, scale) else { return };
+    let style = TextStyle::words(KNOB_LETTERS * scale, theme.text).aligned(Align::Center);
     let shade = TextStyle { color: theme.background.with_alpha(0.8), ..style };
     for (x, y) in [(-1.0, 0.0), (1.0, 0.0), (0.0, -1.0), (0.0, 1.0)] {
         draw_text_centered(&mut canvas.image, &knob.letters, at + Vec2::new(x, y) * scale, &shade);
@@ -220,12 +245,18 @@ fn draw_now(canvas: &mut Canvas, view: &View, reach: &ReachCone, now: DVec3, the
     canvas.dot(view, now, 3.2 * scale, reach.color, Hidden::Shown);
 }
 
+/// The room of a plate that is wanted at `at`, kept inside a picture of `size`.
+pub(super) fn room_of_plate(text: &str, at: Vec2, size: Vec2, scale: f32) -> Words {
+    let style = TextStyle::words(14.0 * scale, Color::TRANSPARENT);
+    let half = Vec2::new(text_width(text, &style) / 2.0 + 5.0 * scale, 9.5 * scale);
+    Words { middle: at.max(half + 1.0).min((size - half - 1.0).max(half + 1.0)), half }
+}
+
 /// Writes a short text on a plate that keeps it legible over anything, centred at `at` and kept inside the picture.
 pub(super) fn draw_plate(canvas: &mut Canvas, text: &str, at: Vec2, theme: &Theme, scale: f32) {
     let style = TextStyle::words(14.0 * scale, theme.text);
-    let half = Vec2::new(text_width(text, &style) / 2.0 + 5.0 * scale, 9.5 * scale);
     let size = Vec2::new(canvas.width() as f32, canvas.height() as f32);
-    let at = at.max(half + 1.0).min((size - half - 1.0).max(half + 1.0));
+    let Words { middle: at, half } = room_of_plate(text, at, size, scale);
     let radius = 4.0 * scale;
     let mut outline = Vec::with_capacity(24);
     for (corner, (x, y)) in [(1.0, 1.0), (-1.0, 1.0), (-1.0, -1.0), (1.0, -1.0)].into_iter().enumerate() {

@@ -4,11 +4,13 @@ use glam::{DVec3, Vec2};
 
 use crate::raster::camera::{Camera, View};
 use crate::raster::canvas::{Canvas, Hidden, Spot, Stroke};
-use crate::raster::disc::{Knob, PlaneDisc, ReachCone, draw_disc, draw_knob, draw_plate, draw_reach};
+use crate::raster::disc::{
+    Knob, PlaneDisc, ReachCone, draw_disc, draw_knob, draw_plate, draw_reach, room_of_knob, room_of_plate,
+};
 use crate::raster::figure::{Figure, draw_figures};
 use crate::raster::floor::{Floor, draw_floor};
 use crate::raster::image::Image;
-use crate::raster::names::draw_names;
+use crate::raster::names::{Taken, draw_names};
 use crate::raster::palette::{Color, Theme};
 
 /// The way a joint or tip takes through the world. A dot for each frame shows its speed.
@@ -112,15 +114,21 @@ pub fn render_into(scene: &SceneView, canvas: &mut Canvas) {
     for path in &scene.tip_paths {
         draw_tip_path(canvas, &view, path, theme, scale);
     }
-    draw_names(canvas, &view, &scene.names, theme, scale);
+    let size = Vec2::new(scene.width as f32, scene.height as f32);
+    let mut taken = Taken(scene.knobs.iter().flat_map(|knob| room_of_knob(&view, knob, scale)).collect());
+    let plates: Vec<_> =
+        scene.labels.iter().map(|label| place_label(label, &view, size, scale, &mut taken)).collect();
+    draw_names(canvas, &view, &scene.names, theme, scale, &mut taken);
     for disc in &scene.discs {
         draw_disc(canvas, &view, disc, theme, scale);
     }
     for knob in &scene.knobs {
         draw_knob(canvas, &view, knob, theme, scale);
     }
-    for label in &scene.labels {
-        draw_label(canvas, &view, label, theme, scale);
+    for (label, place) in scene.labels.iter().zip(plates) {
+        let Some((foot, at)) = place else { continue };
+        canvas.flat_polyline(&[foot, at], &Stroke::over(theme.text_faint, scale));
+        draw_plate(canvas, &label.text, at, theme, scale);
     }
 }
 
@@ -156,9 +164,19 @@ fn dot_step(seen: &[Option<Vec2>], least_gap: f32) -> usize {
     wanted.next_power_of_two()
 }
 
-fn draw_label(canvas: &mut Canvas, view: &View, label: &Label, theme: &Theme, scale: f32) {
-    let Some(spot) = Spot::of(view, label.at) else { return };
-    let at = spot.pixel + Vec2::new(0.0, -20.0 * scale);
-    canvas.flat_polyline(&[spot.pixel, at], &Stroke::over(theme.text_faint, scale));
-    draw_plate(canvas, &label.text, at, theme, scale);
+/// What a label names and where its plate stands, in pixels: above that, else beside or higher where others stand.
+fn place_label(
+    label: &Label,
+    view: &View,
+    size: Vec2,
+    scale: f32,
+    taken: &mut Taken,
+) -> Option<(Vec2, Vec2)> {
+    let foot = Spot::of(view, label.at)?.pixel;
+    let room = |offset: Vec2| room_of_plate(&label.text, foot + offset * scale, size, scale);
+    let step = 2.0 * room(Vec2::ZERO).half / scale + 3.0;
+    let columns = [0.0, 1.0, -1.0, 2.0, -2.0];
+    let places = (0..3).flat_map(|row| columns.map(|column| Vec2::new(column, row as f32)));
+    let places = places.map(|Vec2 { x, y }| room(Vec2::new(x * step.x, -20.0 - y * step.y)));
+    Some((foot, taken.take_first(places)?.middle))
 }

@@ -165,6 +165,34 @@ impl Document {
         self.works.iter().position(|work| work.source == clip.source && work.clip == clip.clip)
     }
 
+    /// The sources whose skeletons the passes of `work` need, and those of the works behind it.
+    pub fn skeletons_behind(&self, work: usize) -> BTreeSet<usize> {
+        let works = self.leans_on(work).into_iter().chain([work]).filter_map(|work| self.works.get(work));
+        let passes = works.flat_map(|work| &work.passes);
+        passes.filter_map(|pass| needed_skeleton(pass)).collect()
+    }
+
+    /// Gives the joints of a source other numbers wherever passes, limits and snags name them. `now` gives a joint's new number;
+    /// what names one that is gone is taken out.
+    pub(super) fn renumber_joints(&mut self, source: usize, now: &dyn Fn(usize) -> Option<usize>) {
+        for work in &mut self.works {
+            // Behind a retarget numbers are those of the target.
+            let mut is_meant = work.source == source;
+            if is_meant {
+                work.left.retain_mut(|mark| now(mark.joint).map(|joint| mark.joint = joint).is_some());
+                work.limits = work.limits.take().map(|limits| Arc::new(limits.renumbered(now)));
+            }
+            for pass in &mut work.passes {
+                if is_meant {
+                    pass.step.kind_mut().renumber(now);
+                }
+                if let Some(onto) = needed_skeleton(pass).filter(|_| pass.on) {
+                    is_meant = onto == source;
+                }
+            }
+        }
+    }
+
     /// The works whose results the passes of `work` need, and what those need in turn, in rising order. A work that is
     /// among its own needs leans on itself, and so has no result that could be told.
     pub fn leans_on(&self, work: usize) -> BTreeSet<usize> {
@@ -183,4 +211,12 @@ impl Document {
         }
         found
     }
+}
+
+/// The source that a pass carries its clip to the skeleton of.
+fn needed_skeleton(pass: &Pass) -> Option<usize> {
+    pass.step.kind().needs().into_iter().find_map(|need| match need {
+        Need::Skeleton(source) => Some(source),
+        Need::Clip(_) => None,
+    })
 }

@@ -130,6 +130,8 @@ pub enum Edit {
         source: usize,
         /// Where it is now.
         to: SourceRef,
+        /// The numbers that its joints have from now on, by those so far; `None` for one that is gone. Empty where all keep theirs.
+        joints: Vec<Option<usize>>,
     },
     /// Another file, and work on each of its clips, after those that are there.
     AddSource {
@@ -360,10 +362,13 @@ impl Edit {
                 let error = EditError::NoSuchSource { source_index: *source, count };
                 next.sources.get_mut(*source).ok_or(error)?.reading.rest = *rest;
             }
-            Self::Relocate { source, to } => {
+            Self::Relocate { source, to, joints } => {
                 let count = next.sources.len();
                 let error = EditError::NoSuchSource { source_index: *source, count };
                 *next.sources.get_mut(*source).ok_or(error)? = to.clone();
+                if !joints.is_empty() {
+                    next.renumber_joints(*source, &|joint| joints.get(joint).copied().flatten());
+                }
             }
             Self::Together { edits, .. } => {
                 for edit in edits {

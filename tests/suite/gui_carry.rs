@@ -8,7 +8,8 @@ use turnwright::app::commands::{Action, CarryCommand, CarrySheet, Command};
 use turnwright::app::view_models::CarryState;
 use turnwright::exchange::{ClipAddress, OpenOptions, disk, open};
 use turnwright::retarget::{HoldAt, KeptLimits};
-use turnwright::scene::{PassId, RetargetPass};
+use turnwright::scene::{Edit, PassId, RetargetPass};
+use turnwright::skeleton::RestChoice;
 
 use crate::gui_harness::Bench;
 use crate::support::shared;
@@ -192,4 +193,24 @@ fn an_animal_gets_questions_and_no_arms() {
     sheet.click_beginning("Questions (");
     assert!(sheet.window().bench().session.carry.questions_only);
     assert!(sheet.0.get_all_by_label_contains("to be looked at").next().is_some());
+}
+
+#[test]
+fn another_rest_pose_of_the_target_carries_anew_on_the_bench_and_in_the_sheet() {
+    let Some((walk, figure)) = files() else { return };
+    let mut sheet = open_clip(&walk, [1280.0, 720.0]);
+    sheet.ask(Command::Carry(CarryCommand::OpenOnto(figure)));
+    sheet.click("Back to the bench");
+    let result = |sheet: &Bench<'_>| sheet.window().bench().result().expect("a result").clone();
+    let before = result(&sheet);
+    // The first frame of its first clip, in which limbs point elsewhere than at rest.
+    sheet.ask(Command::Edit(Edit::ChooseRest { source: 1, rest: Some(RestChoice::FirstFrame) }));
+    let after = result(&sheet);
+    let arm = after.skeleton.find("lowerarm.l").expect("the joint");
+    assert_eq!(after.skeleton.rest_choice(), RestChoice::FirstFrame);
+    let turn = before.local_at(1.0)[arm].rotation.turn_to(after.local_at(1.0)[arm].rotation);
+    assert!(turn.to_degrees() > 0.1, "{}", turn.to_degrees());
+    sheet.undo();
+    let back = result(&sheet);
+    assert!(back.local_at(1.0) == before.local_at(1.0));
 }

@@ -125,6 +125,13 @@ fn keys_are_changed_conflicts_are_told_and_the_usual_ones_come_back() {
     desk.click("Give them to Loop");
     assert_eq!(keys_of(&desk, "Loop"), "Ctrl+G");
     assert_eq!(keys_of(&desk, "Show source as well"), "none");
+    // Keys are taken away, and the usual ones come back, by the buttons beside them.
+    desk.click("Usual keys for Show source as well: Ctrl+G");
+    assert_eq!([keys_of(&desk, "Show source as well"), keys_of(&desk, "Loop")], ["Ctrl+G", "none"]);
+    desk.click("No keys for Show source as well");
+    assert_eq!(keys_of(&desk, "Show source as well"), "none");
+    desk.click("Keys of Loop: none");
+    desk.press(Modifiers::COMMAND, Key::G);
     // A bare letter is for typing.
     desk.click("Keys of Loop: Ctrl+G");
     desk.press(Modifiers::NONE, Key::K);

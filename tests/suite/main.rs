@@ -45,10 +45,12 @@
 //! | `gui_session` | a whole clean-up of a captured dance in a real window, from opening to the exported file |
 //! | `gui_settings` | what is remembered from one run to the next, keys, areas, hints, recent files |
 //! | `gui_snags` | the list of snags by keys and filters, what a scene remembers of it, a long search that is stopped |
+//! | `gui_small` | a small window at a large scale: lists and menus in place of what finds no room |
 //! | `gui_start` | the real program where no window can open |
 //! | `gui_two` | two clips in the window: the blend lane, its pictures and forms, loops |
 //! | `proof` | proof sheets: measured changes whose truth is known, the page and the object |
 //! | `proof_sheet` | every figure of a proof sheet against another way to it, and the passes it tells |
+//! | `gui_table` | the skeleton of a table that has none of its own |
 //! | `gui_time` | turn map, timeline, passes and snags: choices, forms, markers, what is looked for |
 //! | `gui_window` | the whole window, driven by accessible labels; what is asserted is the document |
 //! | `raster` | small pictures of one subject each |
@@ -107,11 +109,15 @@ mod gui_session;
 #[cfg(feature = "gui-tests")]
 mod gui_settings;
 #[cfg(feature = "gui-tests")]
+mod gui_small;
+#[cfg(feature = "gui-tests")]
 mod gui_snags;
 #[cfg(feature = "gui-tests")]
 mod gui_space;
 #[cfg(feature = "gui-tests")]
 mod gui_start;
+#[cfg(feature = "gui-tests")]
+mod gui_table;
 #[cfg(feature = "gui-tests")]
 mod gui_time;
 #[cfg(feature = "gui-tests")]

@@ -547,6 +547,21 @@ fn what_hangs_on_a_body_is_no_limb() {
 }
 
 #[test]
+fn a_mark_on_the_head_is_not_the_head() {
+    let unnamed = |build: &Build| build.clone().rename(|index, _| format!("n{index}"));
+    for names in [&A, &B] {
+        let mut marked = person(names);
+        let head = marked.at(Role::Head);
+        marked.tips[head].clear();
+        // Neck, or two of them, and a head without an end: the last one is the head.
+        check("a head without an end", &unnamed(&marked));
+        marked.add("top", Some(head), [0.0, 1.8, 0.02], None);
+        check("a head whose end is a joint", &unnamed(&marked));
+        check("the same with names", &marked);
+    }
+}
+
+#[test]
 fn fingers_by_name_and_by_place() {
     let word = |finger: Finger| match finger {
         Finger::Little => "Pinky".to_owned(),

@@ -15,6 +15,7 @@ pub enum Action {
     SaveAs,
     Export,
     Relocate,
+    TableSkeleton,
     Quit,
     Undo,
     Redo,

@@ -95,6 +95,8 @@ pub enum Command {
     },
     /// Use this file as a source.
     RelocateTo(usize, PathBuf),
+    /// Take the skeleton of the table on show from this file; without one as it is by itself.
+    UseSkeleton(Option<PathBuf>),
     /// Measure the turns of the clip on show, and of all others of its file, from this pose.
     ChooseRest(RestChoice),
     /// Ask with the desktop's own dialog.

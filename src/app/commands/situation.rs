@@ -16,6 +16,8 @@ pub struct Situation {
     pub has_several_clips: bool,
     /// A source is missing or not the one that was saved.
     pub has_trouble: bool,
+    /// The clip is a table whose skeleton can be taken from another file.
+    pub has_table: bool,
     /// What undo would take back.
     pub undo: Option<String>,
     /// What redo would bring back.

@@ -6,6 +6,7 @@ use std::sync::Arc;
 use egui::Context;
 
 use super::super::bench::{Evaluated, FromClips, Project, Searched, SourceState, file_name};
+use super::super::commands::Action;
 use super::super::file_picker::{Picked, Purpose};
 use super::super::panels::{Dialog, Form, Level, Message};
 use super::super::view_models::{CurveKey, CurveSet, HeatMap, HeatWish, TimeWindow};
@@ -104,6 +105,15 @@ pub(crate) enum Answer {
         /// The file, or why not.
         result: Result<Arc<Source>, String>,
     },
+    /// A table was read anew with another skeleton, or not.
+    Reread {
+        /// For which project.
+        serial: u64,
+        /// Which source.
+        index: usize,
+        /// The file, or why not.
+        result: Result<Arc<Source>, String>,
+    },
     /// About a blend or a loop.
     Blend(BlendAnswer),
     /// About a retarget.
@@ -177,6 +187,7 @@ impl Window {
             Answer::Exported(result) => self.take_exported(result),
             Answer::SettingsKept(result) => self.take_settings_kept(result),
             Answer::Relocated { serial, index, result } => self.take_relocated(serial, index, result),
+            Answer::Reread { serial, index, result } => self.take_reread(serial, index, result),
             Answer::Blend(answer) => self.take_blend(answer),
             Answer::Carry(answer) => self.take_carry(answer),
         }
@@ -189,7 +200,7 @@ impl Window {
     }
 
     /// The label of the chosen joint, and the clip it belongs to.
-    fn chosen_label(&self) -> Option<(Arc<Clip>, String)> {
+    pub(super) fn chosen_label(&self) -> Option<(Arc<Clip>, String)> {
         let (joint, clip) = (self.bench.session.joint?, self.bench.result()?);
         (joint < clip.skeleton.len()).then(|| (Arc::clone(clip), clip.skeleton.label(joint).to_owned()))
     }
@@ -248,6 +259,7 @@ impl Window {
         let several = project.document().works.len() > 1 && wanted.is_none();
         self.show_project(project, wanted.unwrap_or(0));
         self.tell_notes(notes);
+        self.offer_skeleton();
         self.dialog = several.then_some(Dialog::ChooseClip);
     }
 
@@ -310,10 +322,7 @@ impl Window {
                         format!("{}: this file has changed since the scene was saved", known.path.display())
                     }
                 };
-                Some(Message {
-                    offer: Some(super::super::commands::Action::Relocate),
-                    ..Message::error(text)
-                })
+                Some(Message { offer: Some(Action::Relocate), ..Message::error(text) })
             })
             .collect();
         self.show_project(project, 0);
@@ -397,19 +406,99 @@ impl Window {
             sha256: source.sha256().to_owned(),
             reading: source.reading.clone(),
         };
+        let mut joints = Vec::new();
         if let Some(state) = project.sources.get_mut(index) {
+            joints = state.source().map_or_else(Vec::new, |old| new_numbers(old, &source));
+            // Undo goes back to what was open.
+            project.other_readings.extend(state.source().cloned());
             *state = SourceState::Ready(source);
         }
         for findings in &mut project.findings {
             *findings = super::super::bench::Findings::default();
         }
         self.asked.survey = None;
-        self.edit(&Edit::Relocate { source: index, to });
+        self.edit(&Edit::Relocate { source: index, to, joints });
         self.dialog = None;
         self.messages.retain(|message| message.offer.is_none());
         let work = self.bench.session.work;
         let clip = self.bench.source().cloned();
         self.bench.session.turn_to(work, clip.as_deref());
+    }
+
+    fn take_reread(&mut self, serial: u64, index: usize, result: Result<Arc<Source>, String>) {
+        let source = match result {
+            Ok(source) => source,
+            Err(error) => {
+                self.form.error = Some(error);
+                return;
+            }
+        };
+        let Some(old) =
+            self.project_mut(serial).and_then(|project| project.sources.get(index)?.source().cloned())
+        else {
+            return;
+        };
+        let named = source.reading.skeleton.as_deref().map(file_name);
+        if let (Some(named), Some(clip)) = (&named, source.clips.first())
+            && !hangs_together(clip)
+        {
+            let turned = clip.skeleton.listed().find(|&joint| clip.rotation(joint).is_some());
+            let name = turned.map_or("", |joint| clip.skeleton.label(joint));
+            self.form.error = Some(format!(
+                "{named}: skeleton: expected joints named as in the table, such as `{name}`, found none of them; name another file"
+            ));
+            return;
+        }
+        self.dialog = None;
+        if source.reading.skeleton == old.reading.skeleton {
+            return;
+        }
+        let to = SourceRef {
+            path: source.path.clone(),
+            sha256: source.sha256().to_owned(),
+            reading: source.reading.clone(),
+        };
+        let label =
+            named.map_or("Skeleton of the table itself".to_owned(), |name| format!("Skeleton of {name}"));
+        let edits = vec![Edit::Relocate { source: index, to, joints: new_numbers(&old, &source) }];
+        let notes = source.notes.iter().map(ToString::to_string).collect::<Vec<_>>();
+        let name = file_name(&source.path);
+        if let Some(project) = self.project_mut(serial) {
+            project.other_readings.push(source);
+        }
+        self.messages.retain(|message| message.offer != Some(Action::TableSkeleton));
+        self.edit(&Edit::Together { label, edits });
+        if !notes.is_empty() {
+            self.tell_notes(vec![(name, notes)]);
+        }
+    }
+
+    /// The clip on show has other joints: what names joints by number is let go, the rest is looked at as before.
+    pub(super) fn show_other_joints(&mut self, chosen: Option<String>) {
+        let work = self.bench.session.work;
+        let clip = self.bench.source().cloned();
+        let (window, at) = (self.bench.session.window, self.bench.session.playback.playhead_secs);
+        self.bench.session.turn_to(work, clip.as_deref());
+        let session = &mut self.bench.session;
+        let joint = chosen.zip(clip).and_then(|(label, clip)| clip.skeleton.find(&label));
+        session.joint = joint.or(session.joint);
+        session.window = window;
+        session.playback.playhead_secs = at;
+    }
+
+    /// Asks for the skeleton of a table where none of its joints hangs on another.
+    fn offer_skeleton(&mut self) {
+        let Some((source, _)) = self.chosen_source().filter(|(source, _)| source.takes_skeleton()) else {
+            return;
+        };
+        let lacks = |clip: &Clip| clip.skeleton.listed().count() > 1 && !hangs_together(clip);
+        if self.bench.source().is_some_and(|clip| lacks(clip)) {
+            let name = file_name(&source.path);
+            let text = format!(
+                "{name}: no joint hangs on another, since the table does not say how they hang together"
+            );
+            self.tell(Message { offer: Some(Action::TableSkeleton), ..Message::note(text) });
+        }
     }
 
     fn take_picked(&mut self, picked: Picked) {
@@ -433,4 +522,17 @@ impl Window {
             _ => {}
         }
     }
+}
+
+/// Whether any joint that the clip turns hangs on another, or has one that hangs on it.
+fn hangs_together(clip: &Clip) -> bool {
+    let skeleton = &clip.skeleton;
+    let hangs = |joint| skeleton.parent_joint(joint).is_some() || !skeleton.children(joint).is_empty();
+    skeleton.listed().any(|joint| clip.rotation(joint).is_some() && hangs(joint))
+}
+
+/// The numbers that a file's joints have once it is read anew, by their labels.
+fn new_numbers(old: &Source, new: &Source) -> Vec<Option<usize>> {
+    let (Some(old), Some(new)) = (old.skeleton(), new.skeleton()) else { return Vec::new() };
+    (0..old.len()).map(|joint| new.find(old.label(joint))).collect()
 }

@@ -192,7 +192,7 @@ impl Window {
             return;
         };
         let (serial, work) = (project.serial, self.bench.session.work);
-        let key = BlendKey { first, behind: project.works_behind(work), pass };
+        let key = BlendKey { first, behind: project.behind(work), pass };
         if self.bench.blend.as_ref().is_some_and(|known| known.key == key) {
             return;
         }

@@ -15,7 +15,7 @@ use super::answers::Answer;
 use crate::demo;
 use crate::exchange::csv::{self, CsvErrorKind, CsvOptions, NamedColumns, TimeUnit};
 use crate::exchange::{self, ClipAddress, OpenError, OpenOptions, Source, disk, ron};
-use crate::scene::{Document, Edit, Library, Loaded, SourceRef};
+use crate::scene::{Document, Edit, Library, Loaded, Reading, SourceRef};
 
 /// A scene as read, with its files as far as they were found.
 #[derive(Debug)]
@@ -233,7 +233,8 @@ impl Window {
             if !path.exists() {
                 disk::write(&path, own.clip_bytes).map_err(|error| error.to_string())?;
             }
-            moved.push(Edit::Relocate { source: index, to: SourceRef { path, ..known.clone() } });
+            let to = SourceRef { path, ..known.clone() };
+            moved.push(Edit::Relocate { source: index, to, joints: Vec::new() });
         }
         for edit in moved {
             self.edit(&edit);
@@ -278,10 +279,33 @@ impl Window {
         });
     }
 
+    /// Asks for the file with the skeleton of the table on show.
+    pub(super) fn ask_for_skeleton(&mut self) {
+        let Some((source, _)) = self.chosen_source() else { return };
+        let known = source.reading.skeleton.as_ref().map(|path| path.display().to_string());
+        self.form = Form::with_path(known.unwrap_or_else(|| self.usual_folder()));
+        self.dialog = Some(Dialog::TableSkeleton);
+    }
+
+    /// Reads the table on show anew with the skeleton of that file, or with the one that it has by itself.
+    pub(super) fn use_skeleton(&mut self, skeleton: Option<PathBuf>) {
+        let (Some(project), Some((source, index))) = (&self.bench.project, self.chosen_source()) else {
+            return;
+        };
+        let serial = project.serial;
+        let reading = Reading { skeleton, ..source.reading.clone() };
+        let options = OpenOptions::default().or_as_remembered(&reading);
+        self.jobs.submit(Slot::Relocate, move |_| {
+            let result = exchange::open(&source.path, &options);
+            let result = result.map(hashed).map_err(|error| error.to_string());
+            Some(Answer::Reread { serial, index, result })
+        });
+    }
+
     /// Asks with the desktop's own dialog.
     pub(super) fn browse(&mut self, purpose: Purpose, ctx: &Context) {
         let typed = match purpose {
-            Purpose::Open | Purpose::Limits | Purpose::Second => self.usual_folder(),
+            Purpose::Open | Purpose::Limits | Purpose::Second | Purpose::Skeleton => self.usual_folder(),
             _ => self.form.path.clone(),
         };
         let wake = ctx.clone();

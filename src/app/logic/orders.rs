@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use super::super::bench::{Evaluated, FromClips, Searched, WorkBehind};
+use super::super::bench::{Behind, Evaluated, FromClips, Searched};
 use super::super::blend_state::BlendKey;
 use super::super::carry_state::CarryKey;
 use super::super::jobs::Slot;
@@ -20,8 +20,8 @@ use crate::skeleton::roles::Roles;
 pub(crate) struct Asked {
     /// Project, work and what is looked for.
     pub survey: Option<(u64, usize, Searched)>,
-    /// Project, work, passes, and the other clips that they need.
-    pub evaluation: Option<(u64, usize, Vec<Pass>, Vec<WorkBehind>)>,
+    /// Project, work, passes, and what else they need.
+    pub evaluation: Option<(u64, usize, Vec<Pass>, Behind)>,
     /// Clips and colours.
     pub heat: Option<FromClips<HeatWish, ()>>,
     /// Clips, joints and view.
@@ -96,8 +96,9 @@ impl Window {
         let (Some(findings), Some(project)) = (self.bench.findings(), &self.bench.project) else { return };
         let (serial, work) = (project.serial, self.bench.session.work);
         let known = findings.evaluated.as_ref();
-        let behind = project.works_behind(work);
-        // Another rest pose, or the file found again, is another source clip under the same passes: its own, or that of a clip behind.
+        let behind = project.behind(work);
+        // Another rest pose, or the file found again, is another source clip under the same passes: its own, or that of a clip or skeleton
+        // behind.
         let is_unchanged = |passes: &[Pass]| {
             known.is_some_and(|known| {
                 Arc::ptr_eq(&known.evaluation.source, source)

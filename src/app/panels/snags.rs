@@ -40,6 +40,8 @@ pub(crate) fn snags_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let title = match total {
         _ if is_finding => "Snags: finding…".to_owned(),
         0 => "Snags".to_owned(),
+        // The buttons beside it need the room.
+        _ if ui.available_width() < 260.0 => format!("Snags: {open}"),
         _ => format!("Snags: {open} open of {total}"),
     };
     strip(ui, &title, |ui| filter_ui(ui, scope));
@@ -331,7 +333,9 @@ fn row_ui(
     if response.clicked() {
         out.push(Command::ChooseSnag(row.index));
     }
-    response.on_hover_text_at_pointer(format!("{}\n{}", row.text, row.kind.mend_explanation()));
+    // Whole where the columns cut it.
+    let whole = format!("{} of {}\n{}\n{}", row.kind, row.joint, row.text, row.kind.mend_explanation());
+    response.on_hover_text_at_pointer(whole);
 }
 
 fn cell_ui(painter: &Painter, words: &str, [left, right]: [f32; 2], y: f32, ink: Color32, is_number: bool) {
@@ -378,24 +382,33 @@ fn details_ui(ui: &mut Ui, footer: Rect, scope: &mut Scope<'_>) {
     } else {
         ui.add_space(4.0);
     }
-    // What finds no room here stands in the menu.
     let room = ui.available_width();
     ui.horizontal(|ui| {
         ui.spacing_mut().item_spacing.x = 5.0;
-        if scope.now.snag_is_mended {
-            action_button(ui, Action::TakeBack, scope.now, scope.out);
-        } else {
-            action_button(ui, Action::Mend, scope.now, scope.out);
-        }
+        let first = if scope.now.snag_is_mended { Action::TakeBack } else { Action::Mend };
+        action_button(ui, first, scope.now, scope.out);
         action_button(ui, Action::Leave, scope.now, scope.out);
-        if room > 330.0 {
+        let (has_switch, has_kind, has_all) = (room > 370.0, room > 500.0, room > 290.0);
+        if has_switch {
             look_switch(ui, scope);
             ui.separator();
         }
-        if room > 500.0 {
+        if has_kind {
             action_button(ui, Action::MendKind, scope.now, scope.out);
         }
-        action_button(ui, Action::MendSafe, scope.now, scope.out);
+        if has_all {
+            action_button(ui, Action::MendSafe, scope.now, scope.out);
+        }
+        if has_switch {
+            return;
+        }
+        // What finds no room beside these is behind one button.
+        let menu = ui.menu_button("More", |ui| {
+            for action in [Action::LookAtMend, Action::MendKind, Action::MendSafe] {
+                entry_ui(ui, action.entry(), scope.now, &scope.look, scope.out);
+            }
+        });
+        menu.response.on_hover_text("What else can be done about snags");
     });
 }
 

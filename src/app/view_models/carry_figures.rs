@@ -78,15 +78,20 @@ fn limbs(figure: &retarget::Figure, local: &LocalPose, map: impl Fn(DVec3) -> DV
     limbs
 }
 
+/// The box around limbs. What carries a figure may stay behind where the clip began: the picture is of the figure itself, so balls count
+/// only where there is nothing else.
+fn extent<'a>(limbs: impl IntoIterator<Item = &'a FigureLimb> + Clone) -> Option<Bounds> {
+    let own = limbs.clone().into_iter().filter(|limb| limb.from != limb.to);
+    let own = Bounds::of_points(own.flat_map(|limb| [limb.from, limb.to]));
+    own.or_else(|| Bounds::of_points(limbs.into_iter().map(|limb| limb.from)))
+}
+
 /// One figure alone.
 pub fn carry_view(picture: &CarryPicture, pose: CarryPose<'_>) -> SceneView {
     let turn = upright(pose.figure);
     let own = limbs(pose.figure, pose.local, |place| turn.apply(place));
     let rest = limbs(pose.figure, &pose.figure.rest, |place| turn.apply(place));
-    let size = Bounds::of_points(rest.iter().flat_map(|limb| [limb.from, limb.to])).map_or(1.0, |all| {
-        let across = all.max - all.min;
-        across.x.max(across.y).max(across.z)
-    });
+    let size = extent(&rest).map_or(1.0, |all| (all.max - all.min).max_element());
     view_of(picture, vec![(own, pose)], size)
 }
 
@@ -101,8 +106,7 @@ pub fn carry_overlay(
     let its = limbs(target.figure, target.local, |place| turns[1].apply(place));
     let own = limbs(source.figure, source.local, |place| turns[0].apply(place) * scale);
     let middle = |limbs: &[FigureLimb]| {
-        Bounds::of_points(limbs.iter().flat_map(|limb| [limb.from, limb.to]))
-            .map_or((DVec3::ZERO, 1.0), |all| (all.center(), (all.max - all.min).max_element()))
+        extent(limbs).map_or((DVec3::ZERO, 1.0), |all| (all.center(), (all.max - all.min).max_element()))
     };
     let size = middle(&its).1.max(middle(&own).1);
     let hips = |pose: &CarryPose<'_>| {
@@ -121,8 +125,8 @@ pub fn carry_overlay(
 }
 
 fn view_of(picture: &CarryPicture, figures: Vec<(Vec<FigureLimb>, CarryPose<'_>)>, size: f64) -> SceneView {
-    let points = figures.iter().flat_map(|(limbs, _)| limbs.iter().flat_map(|limb| [limb.from, limb.to]));
-    let all = Bounds::of_points(points).unwrap_or(Bounds { min: DVec3::ZERO, max: DVec3::ONE });
+    let all = extent(figures.iter().flat_map(|(limbs, _)| limbs));
+    let all = all.unwrap_or(Bounds { min: DVec3::ZERO, max: DVec3::ONE });
     let half = DVec3::new(0.36, 0.5, 0.36) * size.max(1e-9);
     let around = Bounds { min: all.center() - half, max: all.center() + half };
     let eye = picture.eye;

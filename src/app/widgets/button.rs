@@ -102,6 +102,45 @@ pub(crate) fn icon_button(
     response
 }
 
+/// Several words of which one is chosen, side by side from the right end of a strip, the first at the left; where they find no room, a list
+/// to choose from.
+pub(crate) fn segments(
+    ui: &mut Ui,
+    what: &str,
+    choices: &[(&str, Action)],
+    now: &Situation,
+    out: &mut Vec<Command>,
+) {
+    let font = egui::TextStyle::Button.resolve(ui.style());
+    let width = |words: &str| {
+        let galley = ui.painter().layout_no_wrap(words.to_owned(), font.clone(), egui::Color32::WHITE);
+        galley.size().x + 12.0 + ui.spacing().item_spacing.x
+    };
+    if choices.iter().map(|(words, _)| width(words)).sum::<f32>() <= ui.available_width() {
+        for (words, action) in choices.iter().rev() {
+            segment(ui, words, *action, now, out);
+        }
+        return;
+    }
+    let is_on = |action: Action| action.entry().is_on.is_some_and(|is_on| is_on(now));
+    let chosen = choices.iter().find(|(_, action)| is_on(*action)).map_or("", |(words, _)| words);
+    // Its arrow and its edges take the rest.
+    let room = (ui.available_width() - 8.0).max(20.0);
+    let own = (width(chosen) + 22.0).min(room);
+    let combo = egui::ComboBox::from_id_salt(what).selected_text(chosen).width(own).truncate();
+    let response = combo.show_ui(ui, |ui| {
+        for (words, action) in choices {
+            let response = ui.selectable_label(is_on(*action), *words);
+            let label = action.entry().label;
+            response.widget_info(|| WidgetInfo::selected(Role::RadioButton, true, is_on(*action), label));
+            if response.on_hover_text(tooltip_text(ui, *action)).clicked() {
+                out.push(Command::Do(*action));
+            }
+        }
+    });
+    response.response.widget_info(|| WidgetInfo::labeled(Role::ComboBox, true, what));
+}
+
 /// One of several words of which one is chosen, underlined.
 pub(crate) fn segment(ui: &mut Ui, words: &str, action: Action, now: &Situation, out: &mut Vec<Command>) {
     let entry = action.entry();

@@ -14,6 +14,7 @@ pub(crate) enum Icon {
     Last,
     Loop,
     Close,
+    Back,
     Check,
     ChevronRight,
     ChevronDown,
@@ -63,6 +64,10 @@ pub(crate) fn paint_icon(painter: &Painter, bounds: Rect, icon: Icon, color: Col
         Icon::Close => vec![
             Shape::line_segment([at(-4.0, -4.0), at(4.0, 4.0)], thin),
             Shape::line_segment([at(-4.0, 4.0), at(4.0, -4.0)], thin),
+        ],
+        Icon::Back => vec![
+            line(vec![at(-2.0, -2.5), at(3.0, -2.5), at(5.5, 0.5), at(3.0, 4.5), at(-3.0, 4.5)]),
+            filled(vec![at(-2.0, -6.5), at(-2.0, 1.5), at(-6.5, -2.5)]),
         ],
         Icon::Check => vec![line(vec![at(-5.0, 0.0), at(-1.5, 4.0), at(5.5, -4.5)])],
         Icon::ChevronRight => vec![line(vec![at(-2.0, -4.0), at(2.0, 0.0), at(-2.0, 4.0)])],

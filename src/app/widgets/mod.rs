@@ -8,7 +8,7 @@ mod plate;
 mod strip;
 mod time_axis;
 
-pub(crate) use button::{action_button, icon_button, segment, tooltip_text, wide_action_button};
+pub(crate) use button::{action_button, icon_button, segment, segments, tooltip_text, wide_action_button};
 pub(crate) use elide::{name_galley, name_ui};
 pub(crate) use focus::focus_ring;
 pub(crate) use icon::{Icon, paint_icon};

@@ -43,6 +43,8 @@ pub struct Document {
     pub(super) start: f64,
     /// What stands between cells and in numbers.
     pub(super) dialect: Dialect,
+    /// It brings its skeleton along, in lines before its header.
+    pub(super) has_skeleton: bool,
 }
 
 impl fmt::Debug for Document {
@@ -59,6 +61,11 @@ impl Document {
     /// The file as it was.
     pub fn bytes(&self) -> &[u8] {
         self.file.bytes()
+    }
+
+    /// Whether the table brings its skeleton along: then no other is used.
+    pub fn has_skeleton(&self) -> bool {
+        self.has_skeleton
     }
 
     /// The columns of a joint's angles in their order.
@@ -99,9 +106,8 @@ pub fn read<'b>(
             bones.push(found?);
         }
     }
-    if bones.is_empty()
-        && let Some(hierarchy) = &options.hierarchy
-    {
+    let has_skeleton = !bones.is_empty();
+    if !has_skeleton && let Some(hierarchy) = &options.hierarchy {
         bones.clone_from(hierarchy);
     }
     if !records.header()? {
@@ -168,8 +174,16 @@ pub fn read<'b>(
         duration_secs,
     };
     let dialect = records.dialect;
-    let document =
-        Document { file: file.clone(), columns, rows_start, rows: count, repeated, start, dialect };
+    let document = Document {
+        file: file.clone(),
+        columns,
+        rows_start,
+        rows: count,
+        repeated,
+        start,
+        dialect,
+        has_skeleton,
+    };
     Ok((document, clip, notes))
 }
 

@@ -412,5 +412,23 @@ fn neck(
         chain.push(next);
         at = next;
     }
+    if ends_in_a_mark(figure, &chain, height) {
+        chain.pop();
+    }
     chain
+}
+
+/// Whether the last joint of a neck without names only marks where the head ends: nothing lies beyond it, and the way there is a head's,
+/// much longer than what lies between the joints of a neck. With two joints it can't be told: neck and head are as usual as head and mark.
+fn ends_in_a_mark(figure: &Figure<'_>, chain: &[usize], height: f64) -> bool {
+    /// From the joint of the head to its top are 0.11 to 0.14 of a person's height, from the base of the neck to the head 0.05 to 0.08.
+    const LEAST_SHARE: f64 = 0.06;
+    const LEAST_RATIO: f64 = 1.5;
+    let &[.., before, head, mark] = chain else { return false };
+    let way = |from: usize, to: usize| figure.position[from].distance(figure.position[to]);
+    let last = way(head, mark);
+    !figure.is_named
+        && figure.next_place(mark).is_none()
+        && last > LEAST_SHARE * height
+        && last > LEAST_RATIO * way(before, head)
 }

@@ -271,7 +271,7 @@ impl<'f, 'a> Finder<'f, 'a> {
                     ChainKind::Ear => "an ear",
                     ChainKind::Other => "a chain of its own",
                 };
-                format!("{} of {} joint(s) of {kind}", ordinal(own.place), chain.joints.len())
+                format!("{} of {kind}", place_among(own.place, chain.joints.len()))
             } else {
                 "no part of the figure that was found".to_owned()
             };
@@ -298,6 +298,11 @@ impl<'f, 'a> Finder<'f, 'a> {
             by_role,
         }
     }
+}
+
+/// A joint's place among those of a chain.
+pub(super) fn place_among(place: usize, count: usize) -> String {
+    if count == 1 { "the only joint".to_owned() } else { format!("{} of {count} joints", ordinal(place)) }
 }
 
 pub(super) fn ordinal(place: usize) -> String {

@@ -1,7 +1,7 @@
 //! Roles of legs, arms and fingers, and the helpers that lie along their bones.
 
 use super::body::Limbs;
-use super::find::{Case, Finder, ordinal};
+use super::find::{Case, Finder, ordinal, place_among};
 use super::fingers;
 use super::found::{Chain, ChainKind, TwistHelper};
 use super::limbs::{ARM, LEG};
@@ -42,7 +42,7 @@ impl Finder<'_, '_> {
                         self.side_certainty
                     },
                     margin,
-                    place: format!("{} of {n} joint(s) in the {} {limb}", ordinal(place), side.name()),
+                    place: format!("{} in the {} {limb}", place_among(place, n), side.name()),
                 };
                 self.add(joint, role_of(part, side), &case);
             }

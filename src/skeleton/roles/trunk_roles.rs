@@ -2,7 +2,7 @@
 
 use super::body::Plan;
 use super::figure::Figure;
-use super::find::{Case, Finder, ordinal};
+use super::find::{Case, Finder, place_among};
 use super::found::{Chain, ChainKind};
 use super::name::Part;
 use super::role::Role;
@@ -50,8 +50,8 @@ impl Finder<'_, '_> {
                 side: 1.0,
                 margin: if n <= 3 { 1.0 } else { 0.1 },
                 place: format!(
-                    "{} of {n} joint(s) between hips and {}",
-                    ordinal(place),
+                    "{} between hips and {}",
+                    place_among(place, n),
                     if plan.arms.is_some() { "arms" } else { "neck" }
                 ),
             };

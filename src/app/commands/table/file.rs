@@ -46,5 +46,12 @@ pub(super) const ENTRIES: &[Entry] = &[
         None,
         |now| now.has_trouble,
     ),
+    entry(
+        A::TableSkeleton,
+        "Skeleton of the table…",
+        "A CSV file says how joints turn, not how they hang together: take that from another clip or a table of joints",
+        None,
+        |now| now.has_table,
+    ),
     entry(A::Quit, "Quit", "Close the window", Some(ctrl(Key::Q)), ALWAYS).group(),
 ];

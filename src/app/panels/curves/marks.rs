@@ -208,7 +208,8 @@ pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
     for (place, (y, words, color)) in places.into_iter().enumerate() {
         // Above its curve, below the name before it, and with room for those still to come.
         let room = rows.max - APART * (count - place) as f32;
-        let y = (y - 9.0).max(lowest + APART).clamp(rows.min, room.max(rows.min));
+        let top = rows.min + 0.5 * APART;
+        let y = (y - 9.0).max(lowest + APART).clamp(top, room.max(top));
         lowest = y;
         let galley = painter.layout_no_wrap(words, font.clone(), color);
         let at = pos2(chart.axis.span.max - galley.size().x - 4.0, y - galley.size().y / 2.0);
@@ -223,7 +224,9 @@ pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
 pub(super) fn legend_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, now: f64, chosen: usize) {
     let Some(set) = chart.sets.first() else { return };
     let area = chart.area;
-    let mut y = area.top() + 16.0;
+    // In a low chart name and value stand in one line, so that all find room.
+    let is_low = area.height() < 34.0 * set.lines.len() as f32 + 16.0;
+    let mut y = area.top() + if is_low { 10.0 } else { 16.0 };
     let left = area.left() + INSET;
     for (index, line) in set.lines.iter().enumerate() {
         let is_source = chart.is_source_alone && line.after.is_some();
@@ -233,12 +236,20 @@ pub(super) fn legend_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, now: 
             painter.circle_filled(pos2(left + 6.0, y), 3.6, color);
         }
         let at = pos2(left + 17.0, y);
-        painter.text(at, Align2::LEFT_CENTER, &line.name, FontId::proportional(12.5), look.text);
-        y += 15.0;
+        let name = painter.text(at, Align2::LEFT_CENTER, &line.name, FontId::proportional(12.5), look.text);
         let mono = FontId::monospace(11.5);
         let words = |value: Option<f64>| value.map_or(String::new(), |value| number(value, set.unit));
         let value = words(chart.value(set, index, now));
         let before = words(set.times.value(line.before.values(), now));
+        if is_low {
+            painter.text(pos2(name.right() + 7.0, y), Align2::LEFT_CENTER, &value, mono, look.text);
+            y += 16.0;
+            if y > area.bottom() {
+                break;
+            }
+            continue;
+        }
+        y += 15.0;
         let end = painter.text(pos2(left + 17.0, y), Align2::LEFT_CENTER, &value, mono.clone(), look.text);
         if before != value && !chart.is_source_alone && area.height() > 50.0 * set.lines.len() as f32 {
             y += 14.0;

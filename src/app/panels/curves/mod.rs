@@ -15,7 +15,7 @@ use egui::{Rangef, Rect, Role, Sense, Ui, WidgetInfo, pos2, vec2};
 use super::super::commands::Action;
 use super::super::theme::{GUTTER_WIDTH, TIME_MARGIN};
 use super::super::view_models::{CurveView, fitted_values};
-use super::super::widgets::{TimeAxis, hint, playhead, segment, spoken, strip, vertical_grid};
+use super::super::widgets::{TimeAxis, hint, playhead, segments, spoken, strip, vertical_grid};
 use super::Scope;
 use axis::ValueAxis;
 use chart::Chart;
@@ -41,10 +41,14 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         [first, more @ ..] => format!("Rotation curves: {} and {} more", name(*first), more.len()),
     };
     strip(ui, &title, |ui| {
-        segment(ui, CurveView::TurnRate.label(), Action::TurnRate, scope.now, scope.out);
-        segment(ui, CurveView::FileNumbers.label(), Action::FileNumbers, scope.now, scope.out);
-        segment(ui, CurveView::SwingTwist.label(), Action::SwingTwist, scope.now, scope.out);
-        segment(ui, CurveView::PlaneAngles.label(), Action::PlaneAngles, scope.now, scope.out);
+        let views = [
+            (CurveView::PlaneAngles, Action::PlaneAngles),
+            (CurveView::SwingTwist, Action::SwingTwist),
+            (CurveView::FileNumbers, Action::FileNumbers),
+            (CurveView::TurnRate, Action::TurnRate),
+        ];
+        let views = views.map(|(view, action)| (view.label(), action));
+        segments(ui, "What curves show", &views, scope.now, scope.out);
     });
     let Some(clip) = clip else {
         hint(ui, "No clip");

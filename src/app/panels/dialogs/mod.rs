@@ -15,6 +15,7 @@ mod path;
 mod relocate;
 mod sheet;
 mod shortcuts;
+mod skeleton;
 mod unsaved;
 
 use std::path::PathBuf;
@@ -53,6 +54,8 @@ pub(crate) enum Dialog {
     Export,
     /// Where a missing source is.
     Relocate(usize),
+    /// A file with the skeleton of the table on show.
+    TableSkeleton,
     /// A file of limits.
     LimitsPath,
     /// A marker's name.
@@ -105,6 +108,7 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
             }
             Dialog::MarkerName(at) => marker::marker_sheet(ui, *at, form, scope),
             Dialog::Relocate(source) => relocate::relocate_sheet(ui, *source, form, scope),
+            Dialog::TableSkeleton => skeleton::skeleton_sheet(ui, form, scope),
             Dialog::Export => export::export_sheet(ui, form, scope),
             Dialog::Columns(path, names) => columns::columns_sheet(ui, path, names, form, scope),
             Dialog::ChooseClip => clips::clips_sheet(ui, scope),

@@ -1,16 +1,20 @@
 //! All actions and their keys, and changing them.
 
 use egui::{
-    FontId, Key, KeyboardShortcut, RichText, Role, ScrollArea, Sense, TextEdit, Ui, WidgetInfo, vec2,
+    FontId, Key, KeyboardShortcut, Rect, RichText, Role, ScrollArea, Sense, TextEdit, Ui, WidgetInfo, vec2,
 };
 
 use super::super::super::commands::{
     Action, Command, Entry, HOLD_FOR_SOURCE, MORE_KEYS, Menu, SettingsCommand, TABLE,
 };
 use super::super::super::settings::{Conflict, Keymap};
+use super::super::super::widgets::{Icon, focus_ring, paint_icon};
 use super::super::Scope;
 use super::form::Form;
 use super::sheet::heading;
+
+/// Width of the buttons with keys: two of them side by side find room.
+const KEYS: f32 = 164.0;
 
 /// The list by menu; keys are changed by clicking them and pressing others.
 pub(super) fn shortcuts_sheet(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>) {
@@ -143,7 +147,13 @@ fn capture_ui(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>) {
             }
         });
     } else {
-        ui.label(RichText::new("Click keys to press others").size(12.5).color(look.faint));
+        ui.label(
+            RichText::new(
+                "Click keys to press others; the cross takes them away, the arrow brings the usual ones back",
+            )
+            .size(12.5)
+            .color(look.faint),
+        );
     }
 }
 
@@ -168,9 +178,9 @@ fn entry_row(ui: &mut Ui, entry: &Entry, map: &Keymap, form: &mut Form, scope: &
         fixed(ui, 182.0, entry.label, look.text);
         let is_waiting = form.capturing == Some(action);
         let label = if is_waiting { "press keys…" } else { &shown };
-        let button =
-            egui::Button::new(RichText::new(label).monospace().size(12.0)).min_size(vec2(150.0, 19.0));
-        let response = ui.add(button);
+        let font = RichText::new(label).monospace().size(12.0);
+        let button = egui::Button::new(font).min_size(vec2(KEYS, 19.0)).truncate();
+        let response = ui.add_sized(vec2(KEYS, 19.0), button);
         response.widget_info(|| {
             WidgetInfo::labeled(Role::Button, true, format!("Keys of {}: {shown}", entry.label))
         });
@@ -178,27 +188,41 @@ fn entry_row(ui: &mut Ui, entry: &Entry, map: &Keymap, form: &mut Form, scope: &
             form.capturing = (!is_waiting).then_some(action);
             form.conflict = None;
         }
+        // Each has its place, so that the words behind them stand one under the other.
+        let (away, back) = (place(ui, 20.0), place(ui, 20.0));
         if own.is_some() {
-            small(ui, "none", &format!("No keys for {}", entry.label), (action, None), scope);
+            small(ui, away, Icon::Close, &format!("No keys for {}", entry.label), (action, None), scope);
         }
         if own != entry.shortcut {
             let label = format!("Usual keys for {}: {usual}", entry.label);
-            small(ui, "usual", &label, (action, entry.shortcut), scope);
+            small(ui, back, Icon::Back, &label, (action, entry.shortcut), scope);
         }
         let room = ui.available_width();
         fixed(ui, room, entry.tooltip, look.faint);
     });
 }
 
+/// Room for a small button.
+fn place(ui: &mut Ui, width: f32) -> Rect {
+    ui.allocate_exact_size(vec2(width, 19.0), Sense::hover()).0
+}
+
 fn small(
-    ui: &mut Ui,
-    words: &str,
+    ui: &Ui,
+    bounds: Rect,
+    icon: Icon,
     label: &str,
     (action, keys): (Action, Option<KeyboardShortcut>),
     scope: &mut Scope<'_>,
 ) {
-    let response = ui.add(egui::Button::new(RichText::new(words).size(11.5)).frame(false));
+    let response = ui.interact(bounds, ui.scope_id().with(label), Sense::click());
     response.widget_info(|| WidgetInfo::labeled(Role::Button, true, label));
+    if response.hovered() {
+        ui.painter().rect_filled(bounds, 4.0, scope.look.hover);
+    }
+    let ink = if response.hovered() { scope.look.text } else { scope.look.faint };
+    paint_icon(ui.painter(), bounds.shrink(4.0), icon, ink);
+    focus_ring(ui, &response);
     if response.on_hover_text(label).clicked() {
         scope.out.push(Command::Settings(SettingsCommand::SetKeys(action, keys)));
     }
@@ -221,7 +245,7 @@ fn key_row(ui: &mut Ui, scope: &Scope<'_>, label: &str, keys: &str, tooltip: &st
     ui.horizontal(|ui| {
         ui.spacing_mut().item_spacing.x = 4.0;
         fixed(ui, 182.0, label, look.text);
-        fixed(ui, 150.0, keys, look.text);
+        fixed(ui, KEYS + 48.0, keys, look.text);
         let room = ui.available_width();
         fixed(ui, room, tooltip, look.faint);
     });

@@ -57,7 +57,7 @@ pub(super) fn reach_words(ui: &mut Ui, bounds: Rect, scope: &Scope<'_>, reach: &
 pub(super) fn view_card(ui: &mut Ui, bounds: Rect, scope: &mut Scope<'_>) {
     const CELL: egui::Vec2 = egui::Vec2::new(30.0, 20.0);
     let size = vec2(CELL.x * 3.0, CELL.y * 2.0);
-    if bounds.width() < size.x + 40.0 || bounds.height() < 120.0 {
+    if bounds.width() < size.x + 40.0 || bounds.height() < 180.0 {
         return;
     }
     let card = Rect::from_min_size(bounds.right_top() + vec2(-size.x - 10.0, 10.0), size);
