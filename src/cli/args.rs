@@ -13,6 +13,7 @@ use crate::skeleton::RestChoice;
 use crate::snag::SnagKind;
 
 use super::limits::LimitsName;
+use super::numbers::{count, number};
 
 /// Finds, mends and proves rotation faults in animation clips.
 ///
@@ -144,18 +145,18 @@ pub(super) struct BlendArgs {
     #[arg(short, long, value_name = "OUT")]
     pub(super) output: PathBuf,
     /// B after A, overlapping so many seconds, set down where A is and as it is heading
-    #[arg(long, value_name = "SECONDS", allow_negative_numbers = true)]
+    #[arg(long, value_name = "SECONDS", value_parser = number, allow_hyphen_values = true)]
     pub(super) join: Option<f64>,
     /// Between A (0) and B (1), frame by frame up to the shorter end; a weight, or a curve of weights at seconds of A, smooth
     /// between them, such as 0:0,1.5:1
     #[arg(long, value_name = "W|S:W,…", value_parser = parse_weights, allow_hyphen_values = true)]
     pub(super) mix: Option<WeightCurve>,
     /// What B does beyond its first frame laid over A, so many times
-    #[arg(long, value_name = "W", allow_negative_numbers = true)]
+    #[arg(long, value_name = "W", value_parser = number, allow_hyphen_values = true)]
     pub(super) add: Option<f64>,
     /// The mean of A and all B, frame by frame up to the shortest end: a weight for A and one for each B, such as 1,1,2; only
     /// their ratio matters
-    #[arg(long, value_name = "W,…", value_delimiter = ',', allow_negative_numbers = true)]
+    #[arg(long, value_name = "W,…", value_parser = number, allow_hyphen_values = true, value_delimiter = ',')]
     pub(super) mean: Option<Vec<f64>>,
     /// With --join: overlap where the poses of both are nearest, not the end of A and the start of B
     #[arg(long, requires = "join", conflicts_with_all = ["mix", "add", "mean"])]
@@ -185,7 +186,7 @@ pub(super) struct BlendArgs {
     #[arg(long, value_name = "J[=F],…", value_delimiter = ',')]
     pub(super) limbs: Option<Vec<String>>,
     /// With --limbs: take so many joints above each along, less and less
-    #[arg(long, value_name = "N", requires = "limbs", default_value_t = 0)]
+    #[arg(long, value_name = "N", value_parser = count, allow_hyphen_values = true, requires = "limbs", default_value_t = 0)]
     pub(super) soft: usize,
     /// Allow an input to be replaced
     #[arg(long)]
@@ -244,10 +245,10 @@ pub(super) struct RetargetArgs {
     #[arg(long, value_name = "FILE", num_args = 0..=1, conflicts_with = "limits")]
     pub(super) carry_limits: Option<Vec<LimitsName>>,
     /// Take the clip's pose at this second for the source's rest pose
-    #[arg(long, value_name = "S")]
+    #[arg(long, value_name = "S", value_parser = number, allow_hyphen_values = true)]
     pub(super) rest_at: Option<f64>,
     /// Take the target clip's pose at this second for the target's rest pose
-    #[arg(long, value_name = "S")]
+    #[arg(long, value_name = "S", value_parser = number, allow_hyphen_values = true)]
     pub(super) onto_rest_at: Option<f64>,
     /// Turn the arms of a rest pose level and its legs down before rest poses are compared
     #[arg(long, value_name = "source|target|both")]
@@ -286,26 +287,26 @@ pub(super) struct ConvertArgs {
     #[arg(short, long, value_name = "OUT")]
     pub(super) output: PathBuf,
     /// Frames per second to resample at
-    #[arg(long, value_name = "FPS", allow_negative_numbers = true)]
+    #[arg(long, value_name = "FPS", value_parser = number, allow_hyphen_values = true)]
     pub(super) rate: Option<f64>,
     /// Second at which the part begins
-    #[arg(long, value_name = "S", allow_negative_numbers = true)]
+    #[arg(long, value_name = "S", value_parser = number, allow_hyphen_values = true)]
     pub(super) from: Option<f64>,
     /// Second at which the part ends
-    #[arg(long, value_name = "S", allow_negative_numbers = true)]
+    #[arg(long, value_name = "S", value_parser = number, allow_hyphen_values = true)]
     pub(super) to: Option<f64>,
     /// Keep as few keys as leave every joint within so many degrees, at all times; into glTF and CSV
-    #[arg(long, value_name = "DEG")]
+    #[arg(long, value_name = "DEG", value_parser = number, allow_hyphen_values = true)]
     pub(super) reduce: Option<f64>,
     /// Play it so many times over, each round set down where the one before has ended
-    #[arg(long, value_name = "N")]
+    #[arg(long, value_name = "N", value_parser = count, allow_hyphen_values = true)]
     pub(super) repeat: Option<usize>,
     /// Close the loop: let the end meet the start in pose and rate, the root's stride kept; by the size of what is missing, spread
     /// over the whole length, or in a window near the seam
     #[arg(long, value_name = "auto|spread|window", num_args = 0..=1, default_missing_value = "auto", require_equals = true)]
     pub(super) close_loop: Option<CloseLoop>,
     /// Take the part that closes on itself best, at least so many seconds long
-    #[arg(long, value_name = "SECONDS", conflicts_with_all = ["from", "to"])]
+    #[arg(long, value_name = "SECONDS", value_parser = number, allow_hyphen_values = true, conflicts_with_all = ["from", "to"])]
     pub(super) find_loop: Option<f64>,
     /// Allow the input to be replaced
     #[arg(long)]
@@ -326,10 +327,10 @@ pub(super) struct SampleArgs {
     #[arg(value_name = "CLIP")]
     pub(super) clip: String,
     /// At these seconds
-    #[arg(long, value_name = "T,…", value_delimiter = ',', allow_negative_numbers = true)]
+    #[arg(long, value_name = "T,…", value_parser = number, allow_hyphen_values = true, value_delimiter = ',')]
     pub(super) at: Option<Vec<f64>>,
     /// At this many evenly spaced times a second
-    #[arg(long, value_name = "FPS")]
+    #[arg(long, value_name = "FPS", value_parser = number, allow_hyphen_values = true)]
     pub(super) rate: Option<f64>,
     /// Go from key to key on this path in place of the file's own
     #[arg(long, value_enum, value_name = "PATH")]
@@ -443,10 +444,10 @@ pub(super) struct PictureArgs {
     #[arg(long)]
     pub(super) window: bool,
     /// At these seconds; eight spread over the clip if not given
-    #[arg(long, value_name = "T,…", value_delimiter = ',', allow_negative_numbers = true)]
+    #[arg(long, value_name = "T,…", value_parser = number, allow_hyphen_values = true, value_delimiter = ',')]
     pub(super) at: Option<Vec<f64>>,
     /// Width and height of the picture in pixels
-    #[arg(long, value_name = "WxH", default_value = "1600x900", value_parser = parse_size)]
+    #[arg(long, value_name = "WxH", default_value = "1600x900", value_parser = parse_size, allow_hyphen_values = true)]
     pub(super) size: [usize; 2],
     /// Allow an input to be replaced
     #[arg(long)]

@@ -17,6 +17,9 @@ pub enum CliError {
     /// A clip file that can't be read.
     #[error("{}", with_advice(&.0.to_string(), advice_for_open(.0)))]
     Open(#[from] exchange::OpenError),
+    /// A clip that is too large to be searched.
+    #[error(transparent)]
+    Search(#[from] exchange::SearchTooLarge),
     /// A scene that can't be read.
     #[error("{}", with_advice(&.0.to_string(), "open it in a text editor, or save it anew from the window"))]
     Scene(#[from] ron::SceneError),

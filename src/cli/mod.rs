@@ -7,6 +7,7 @@ mod commands;
 mod error;
 mod input;
 mod limits;
+mod numbers;
 mod output;
 mod progress;
 mod targets;

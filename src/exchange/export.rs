@@ -58,6 +58,15 @@ pub enum WriteError {
         /// The source.
         path: PathBuf,
     },
+    /// A clip without joints for a format that is nothing without them.
+    #[error(
+        "{path}: skeleton: expected joints to write, found none, as the clip turns and moves none; only .gltf and .glb can hold it",
+        path = path.display()
+    )]
+    NoJoints {
+        /// The target.
+        path: PathBuf,
+    },
     /// The results do not belong to the source.
     #[error("{path}: expected a result for each of {expected} clips, found {found}", path = path.display())]
     Count {
@@ -126,12 +135,16 @@ pub fn write(
     guard: &Guard,
 ) -> Result<Written, WriteError> {
     guard.check(target)?;
-    if Format::of(target)? == Format::Bvh {
+    let format = Format::of(target)?;
+    let is_patched = matches!((&source.origin, format), (Origin::Csv(_), Format::Csv));
+    if format == Format::Bvh || (format == Format::Csv && !is_patched) {
         // The text of a long clip is large, and goes out piece by piece.
         let clip = one_of(source, results, choice)?;
+        check_joints(clip, target)?;
         let is_own = source.clips.first().is_some_and(|own| own.has_skeleton_of(clip));
-        let rows = Rows::of(clip, Format::Bvh);
+        let rows = Rows::of(clip, format);
         let mut notes = disk::write_with(target, |out| match &source.origin {
+            _ if format == Format::Csv => csv::from_clip_to(&rows.clip, out),
             Origin::Bvh(document) if is_own && has_same_joints(source, &rows.clip) => {
                 bvh::write_to(document, &source.clips[0], &rows.clip, out)
             }
@@ -264,6 +277,12 @@ fn check_count(source: &Source, results: &[Arc<Clip>]) -> Result<(), WriteError>
     Err(WriteError::Count { path: source.path.clone(), expected, found })
 }
 
+/// A BVH text begins with a joint, and a table of none has nothing but times.
+fn check_joints(clip: &Clip, target: &Path) -> Result<(), WriteError> {
+    let has_any = clip.skeleton.listed().next().is_some();
+    has_any.then_some(()).ok_or_else(|| WriteError::NoJoints { path: target.to_owned() })
+}
+
 /// The clip of a file that holds one only.
 fn one_of<'r>(
     source: &Source,
@@ -327,6 +346,7 @@ fn form(format: Format) -> gltf::Form {
 fn new_file(clip: &Clip, format: Format, stem: &str, target: &Path) -> Result<Encoded, WriteError> {
     match format {
         Format::Bvh | Format::Csv => {
+            check_joints(clip, target)?;
             let rows = Rows::of(clip, format);
             let made =
                 if format == Format::Bvh { bvh::from_clip(&rows.clip) } else { csv::from_clip(&rows.clip) };

@@ -562,6 +562,10 @@ fn slips_are_told_in_one_line() {
     bench.write("text.glb", b"HIERARCHY");
     bench.write("notes.txt", b"hello");
     bench.write("bare.gltf", br#"{"asset": {"version": "2.0"}}"#);
+    bench.write(
+        "still.gltf",
+        br#"{"asset": {"version": "2.0"}, "animations": [{"channels": [], "samplers": []}]}"#,
+    );
     std::fs::create_dir(bench.path("folder")).unwrap();
     std::fs::create_dir(bench.path("folder.bvh")).unwrap();
     let before = bench.names(".");
@@ -592,6 +596,8 @@ fn slips_are_told_in_one_line() {
         ("mend crane.csv -o crane.csv/x.csv", "cannot write"),
         ("convert crane.csv -o out.txt", "found .txt"),
         ("convert crane.csv -o folder.bvh", "folder.bvh: expected a file, found a folder"),
+        ("convert still.gltf -o x.bvh", "x.bvh: skeleton: expected joints to write, found none"),
+        ("convert still.gltf -o x.csv", "x.csv: skeleton: expected joints to write, found none"),
         ("convert crane.csv -o x.csv --rate 0", "--rate: expected frames per second above 0, found 0"),
         ("convert crane.csv -o x.csv --rate nan", "found NaN"),
         ("convert crane.csv -o x.csv --rate 1e12", "--rate: expected a rate that gives at most"),
@@ -604,6 +610,38 @@ fn slips_are_told_in_one_line() {
         ("sample crane.csv --at 1 --rate 5", "cannot be used with"),
         ("sample crane.csv --at soon", "invalid value 'soon'"),
         ("sample crane.csv --at inf", "--at: expected seconds, found inf"),
+        ("sample crane.csv --rate -5", "--rate: expected frames per second above 0, found -5"),
+        ("sample crane.csv --rate -inf", "--rate: expected frames per second above 0, found -inf"),
+        ("sample crane.csv --rate fast", "for '--rate <FPS>': expected a number such as 0.5, found `fast`"),
+        (
+            "convert crane.csv -o x.csv --from -1",
+            "--from: expected a second within the clip, from 0 to 8.000, found -1",
+        ),
+        ("convert crane.csv -o x.csv --to -1", "--to: expected a second from 0 on, found -1"),
+        (
+            "convert crane.csv -o x.csv --reduce -1",
+            "--reduce: expected degrees above 0 and up to 45, found -1",
+        ),
+        (
+            "convert crane.csv -o x.csv --repeat -3",
+            "for '--repeat <N>': expected a whole number, 0 or more, found `-3`",
+        ),
+        ("convert crane.csv -o x.csv --repeat 2.5", "found `2.5`"),
+        ("convert crane.csv -o x.csv --find-loop -1", "--find-loop: expected"),
+        ("convert crane.csv -o x.csv --find-loop nan", "--find-loop: expected"),
+        ("blend crane.csv crane.csv -o x.csv --join -1", "found -1"),
+        ("blend crane.csv crane.csv -o x.csv --add -inf", "found -inf"),
+        ("blend crane.csv crane.csv -o x.csv --mean 1,-1", "found"),
+        ("blend crane.csv crane.csv -o x.csv --mix 0 --limbs a --soft -1", "found `-1`"),
+        (
+            "retarget deckhand.bvh --onto deckhand.bvh -o x.bvh --rest-at -1",
+            "--rest-at: expected a second within the clip, from 0 to",
+        ),
+        (
+            "retarget deckhand.bvh --onto deckhand.bvh -o x.bvh --onto-rest-at nan",
+            "--onto-rest-at: expected a second within the clip",
+        ),
+        ("picture crane.csv -o x.png --size -5x5", "found `-5x5`"),
         ("sample crane.csv --rate 1e300", "--rate: expected a rate that gives at most"),
         ("sample crane.csv --at 1 --path zigzag", "invalid value 'zigzag'"),
         ("sample crane.csv --at 1 --format xml", "invalid value 'xml'"),

@@ -709,6 +709,42 @@ fn a_bvh_becomes_a_gltf_with_a_figure_and_comes_back_with_running_angles() {
     assert_close!(turned[90][2] - turned[0][2], 900.0, 1e-3);
 }
 
+/// With rates of 0 at both keys a cubic goes by 3t² − 2t³ (glTF 2.0, C.5): at t = 0.2 it is at 0.104 of the chord, where even turns
+/// are at 0.2 of the arc. In the middle both are at the same place.
+#[test]
+fn a_smooth_way_between_frames_is_told_where_a_format_has_even_turns_alone() {
+    use base64::Engine;
+    const DEGREES: f64 = 40.0;
+    let (sine, cosine) = (0.5 * DEGREES).to_radians().sin_cos();
+    let key = |x: f64, w: f64| [0.0, 0.0, 0.0, 0.0, x, 0.0, 0.0, w, 0.0, 0.0, 0.0, 0.0];
+    let numbers = [[0.0, 1.0].as_slice(), &key(0.0, 1.0), &key(sine, cosine)].concat();
+    let bin: Vec<u8> = numbers.iter().flat_map(|number| (*number as f32).to_le_bytes()).collect();
+    let uri = format!("data:;base64,{}", base64::engine::general_purpose::STANDARD.encode(&bin));
+    let document = json!({
+        "asset": { "version": "2.0" },
+        "nodes": [{ "name": "a" }],
+        "buffers": [{ "byteLength": bin.len(), "uri": uri }],
+        "bufferViews": [{ "buffer": 0, "byteLength": 8 }, { "buffer": 0, "byteOffset": 8, "byteLength": 96 }],
+        "accessors": [
+            { "bufferView": 0, "componentType": 5126, "count": 2, "type": "SCALAR", "min": [0], "max": [1] },
+            { "bufferView": 1, "componentType": 5126, "count": 6, "type": "VEC4" },
+        ],
+        "animations": [{
+            "channels": [{ "sampler": 0, "target": { "node": 0, "path": "rotation" } }],
+            "samplers": [{ "input": 0, "output": 1, "interpolation": "CUBICSPLINE" }],
+        }],
+    });
+    let source = opened("slow.gltf", document.to_string().into_bytes());
+    let at = 0.104 * sine;
+    let off = 0.2 * DEGREES - 2.0 * at.atan2(0.896 + 0.104 * cosine).to_degrees();
+    for target in ["slow.bvh", "slow.csv"] {
+        let encoded = encode(&source, &source.clips, None, Path::new(target)).unwrap();
+        let told: Vec<String> = encoded.notes.iter().map(ToString::to_string).collect();
+        let expected = format!("up to {off:.3} degrees off, at 0.2000 s");
+        assert!(told.iter().any(|note| note.contains(&expected)), "{expected}: {told:?}");
+    }
+}
+
 #[test]
 fn end_sites_stay_end_sites_in_csv() {
     let text = "HIERARCHY ROOT a { OFFSET 0 1 0 CHANNELS 3 Zrotation Xrotation Yrotation JOINT b { OFFSET 1 2 3 CHANNELS 0 \

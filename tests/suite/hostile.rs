@@ -16,8 +16,10 @@ use serde_json::{Value, json};
 use turnwright::clip::Clip;
 use turnwright::exchange::csv::{CsvOptions, TimeUnit};
 use turnwright::exchange::{Guard, OpenOptions, Source, csv, disk, encode, open_bytes, ron, write};
+use turnwright::mend::{SurveyOptions, survey};
 use turnwright::rotor::Rotor;
 use turnwright::scene::{Evaluator, NoOthers};
+use turnwright::snag::{SnagKind, Unwatched};
 
 use crate::gltf_broken::{self, Dice};
 
@@ -445,7 +447,7 @@ fn large_files() -> Vec<Large> {
     let turns = "Zrotation Xrotation Yrotation";
     let places = "Xposition Yposition Zposition Zrotation Xrotation Yrotation";
     let bvh = |name, channels: &'static str, numbers: &'static str, fate| {
-        let make = Box::new(move || short_bvh(channels, numbers));
+        let make = Box::new(move || short_bvh(SHORT_SIZE, channels, numbers));
         Large { name, make, fate }
     };
     let csv = |name, columns: &'static str, numbers: &'static str, fate| {
@@ -484,7 +486,7 @@ const SHORT_SIZE: usize = 40 << 20;
 const SHORT_JOINTS: usize = 61;
 
 /// A motion file of such numbers, again and again, with these channels a joint.
-fn short_bvh(channels: &str, numbers: &str) -> Vec<u8> {
+fn short_bvh(size: usize, channels: &str, numbers: &str) -> Vec<u8> {
     let count = channels.split(' ').count();
     let mut text = "HIERARCHY\n".to_owned();
     for joint in 0..SHORT_JOINTS {
@@ -494,7 +496,7 @@ fn short_bvh(channels: &str, numbers: &str) -> Vec<u8> {
     text.push_str(&"}".repeat(SHORT_JOINTS));
     text.push_str("\nMOTION\nFrame Time: 0.01\n");
     let mut numbers = numbers.split_inclusive(' ').cycle();
-    while text.len() < SHORT_SIZE {
+    while text.len() < size {
         text.extend(numbers.by_ref().take(SHORT_JOINTS * count));
         text.push('\n');
     }
@@ -682,6 +684,46 @@ fn large_files_take_no_more_memory_than_eight_times_their_size_and_64_mb() {
         let test = "large_files_take_no_more_memory_than_eight_times_their_size_and_64_mb";
         println!("{}", line_of(start_again(test, &number.to_string()), " is done: "));
     }
+}
+
+/// Searches, alone in its process, the largest file of one turn a joint that may be searched.
+#[expect(clippy::print_stdout, reason = "the parent process reads it")]
+fn search_largest() {
+    // 67 bytes for each of its 2.2 bytes of text; from 2.8 MB on that is more than 8 times the file and 64 MB.
+    let open = |size: usize| {
+        let bytes = short_bvh(size, "Yrotation", "0 1 2 3 4 .5 ");
+        open_bytes(Path::new("search.bvh"), bytes, &OpenOptions::default()).expect("it opens")
+    };
+    let first = (5..).find(|&size| open(size << 19).check_search(0).is_err()).expect("one is refused");
+    let told = open(first << 19).check_search(0).expect_err("as before").to_string();
+    assert!(told.starts_with("search.bvh: clip search: expected a search that takes at most "), "{told}");
+    assert!(told.contains("; cut it into shorter clips with convert --from and --to"), "{told}");
+    // What was made so far is given back; the peak is set to what is used now.
+    let reset = std::fs::OpenOptions::new().write(true).open("/proc/self/clear_refs");
+    let is_reset = reset.and_then(|mut file| file.write_all(b"5")).is_ok();
+    let start = peak_bytes().filter(|_| is_reset);
+    let source = open((first - 1) << 19);
+    let kinds = vec![SnagKind::BrokenValue, SnagKind::SignFlip, SnagKind::HalfTurn];
+    let survey = survey(&source.clips[0], &SurveyOptions { kinds, limits: None }, &Unwatched)
+        .expect("nobody stops it");
+    let size = source.bytes().len() as u64;
+    let used = peak_bytes().zip(start).map_or(0, |(peak, start)| peak - start);
+    println!("searched {} MB with {} MB, {} snags", size >> 20, used >> 20, survey.snags.len());
+    assert!(used <= 8 * size + SPARE_BYTES, "{used} bytes for {size}");
+}
+
+#[test]
+fn a_search_that_would_take_more_than_its_file_may_ask_for_is_refused() {
+    if std::env::var(TASK).is_ok() {
+        return search_largest();
+    }
+    let test = "a_search_that_would_take_more_than_its_file_may_ask_for_is_refused";
+    println!("{}", line_of(start_again(test, ""), "searched "));
+    // A long capture of usual numbers may be searched.
+    let usual =
+        short_bvh(4 << 20, "Zrotation Xrotation Yrotation", "-12.345678 3.141593 170.000001 0.500000 ");
+    let source = open_bytes(Path::new("usual.bvh"), usual, &OpenOptions::default()).expect("it opens");
+    assert_eq!(source.check_search(0), Ok(()));
 }
 
 #[test]

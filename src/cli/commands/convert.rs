@@ -7,6 +7,7 @@ use crate::cli::DONE;
 use crate::cli::args::{CloseLoop, ConvertArgs};
 use crate::cli::error::CliError;
 use crate::cli::input::{self, Input};
+use crate::cli::numbers::shown;
 use crate::cli::output::Output;
 use crate::clip::{self, Clip, ReduceOptions};
 use crate::exchange::{self, Format, Guard, OpenOptions};
@@ -14,6 +15,8 @@ use crate::scene::{LoopPass, NoOthers, PassKind};
 
 /// The most frames a clip is resampled to: an hour at 1000 a second.
 const MOST_FRAMES: f64 = 3.6e6;
+/// The lowest rate: beyond it a BVH's frame time is longer than readers take it for.
+const LEAST_RATE: f64 = 0.001;
 
 /// Within glTF every clip is converted, else the first or the one that is named.
 pub(crate) fn run(args: &ConvertArgs, output: &mut Output) -> Result<u8, CliError> {
@@ -85,7 +88,12 @@ fn part_of(
     let to = to.min(end);
     Ok(Arc::new(match args.rate {
         None => clip::cut(clip, from, to),
-        Some(rate) if (to - from) * rate > MOST_FRAMES => {
+        Some(rate) if rate < LEAST_RATE => {
+            let expected = format!("a rate of at least {LEAST_RATE} frames per second");
+            return Err(argument("--rate", &expected, rate, "choose a higher rate"));
+        }
+        // A part of no length has one frame, but a frame time all the same.
+        Some(rate) if (to - from).max(1.0) * rate > MOST_FRAMES => {
             let expected = format!("a rate that gives at most {MOST_FRAMES:.0} frames");
             return Err(argument(
                 "--rate",
@@ -191,10 +199,5 @@ fn reduced(
 }
 
 fn argument(place: &str, expected: &str, found: f64, advice: &'static str) -> CliError {
-    CliError::Argument {
-        place: place.to_owned(),
-        expected: expected.to_owned(),
-        found: found.to_string(),
-        advice,
-    }
+    CliError::Argument { place: place.to_owned(), expected: expected.to_owned(), found: shown(found), advice }
 }

@@ -177,6 +177,7 @@ impl Mended {
 fn mend_input(input: &Input, limits: &[Option<Arc<Limits>>], choice: &Choice) -> Result<Mended, CliError> {
     let mut mended = Mended { results: input.results.clone(), told: Vec::new() };
     for &index in &input.chosen {
+        input.source.check_search(index)?;
         // What a scene leaves as meant stays.
         let left = input.works[index].as_ref().map_or(&[][..], |work| &work.left);
         let (result, snags, mends) =

@@ -82,6 +82,7 @@ fn times(args: &PictureArgs, clip: &Clip) -> Result<Vec<f64>, CliError> {
 /// source with its snags.
 fn draw(input: &Input, times: &[f64], [width, height]: [usize; 2]) -> Result<Image, CliError> {
     let index = input.first();
+    input.source.check_search(index)?;
     let (before, after) = (&input.source.clips[index], &input.results[index]);
     let progress = ProgressLine::new(format!("{}: looking for snags", input.source.path.display()));
     let survey = mend::survey(before, &SurveyOptions::default(), &progress)?;

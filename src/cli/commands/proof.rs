@@ -51,6 +51,8 @@ pub(crate) fn run(args: &ProofArgs, output: &mut Output) -> Result<u8, CliError>
     inputs.extend(after.files());
     Guard { inputs, force: args.force }.check(&args.output)?;
     let (b, a) = (before.first(), after.first());
+    before.source.check_search(b)?;
+    after.source.check_search(a)?;
     let pair = Pair {
         label: before.source.clip_label(b),
         index: b,

@@ -8,6 +8,7 @@ use crate::cli::args::{RetargetArgs, Straighten};
 use crate::cli::error::CliError;
 use crate::cli::input::{self, Input};
 use crate::cli::limits::LimitsSource;
+use crate::cli::numbers::shown;
 use crate::cli::output::Output;
 use crate::clip::Clip;
 use crate::exchange::{self, ClipAddress, Format, Guard, Source, disk, joint_maps};
@@ -126,6 +127,20 @@ fn figures(
             found: "none".to_owned(),
             advice: "leave the option out",
         });
+    }
+    for (option, secs, clip) in [
+        ("--rest-at", args.rest_at, Some(clip)),
+        ("--onto-rest-at", args.onto_rest_at, onto_clip.map(|own| &**own)),
+    ] {
+        let last = clip.map_or(0.0, |clip| clip.duration_secs);
+        if let Some(found) = secs.filter(|secs| !(0.0..=last).contains(secs)) {
+            return Err(CliError::Argument {
+                place: option.to_owned(),
+                expected: format!("a second within the clip, from 0 to {last:.3}"),
+                found: shown(found),
+                advice: "choose one",
+            });
+        }
     }
     let is_straightened =
         |own: Straighten| args.straighten.is_some_and(|wanted| wanted == own || wanted == Straighten::Both);

@@ -9,6 +9,7 @@ use crate::cli::DONE;
 use crate::cli::args::{PathName, SampleArgs, SampleFormat};
 use crate::cli::error::CliError;
 use crate::cli::input;
+use crate::cli::numbers::shown;
 use crate::cli::output::Output;
 use crate::clip::{Clip, PathKind};
 use crate::skeleton::LocalPose;
@@ -43,7 +44,7 @@ fn times(args: &SampleArgs, clip: &Clip, joints: usize) -> Result<Vec<f64>, CliE
     let error = |place: &str, expected: String, found: f64, advice| CliError::Argument {
         place: place.to_owned(),
         expected,
-        found: found.to_string(),
+        found: shown(found),
         advice,
     };
     if let Some(at) = &args.at {

@@ -94,6 +94,7 @@ fn snags_of(
     kinds: &[SnagKind],
     limits: Option<Arc<Limits>>,
 ) -> Result<Vec<Snag>, CliError> {
+    input.source.check_search(index)?;
     let progress = ProgressLine::new(format!("{}: looking for snags", input.source.path.display()));
     let options = SurveyOptions { kinds: kinds.to_vec(), limits };
     let survey = mend::survey(&input.results[index], &options, &progress)?;

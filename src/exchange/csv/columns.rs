@@ -165,10 +165,7 @@ pub(super) fn columns(
     if let Some(found) = sensor_columns(&lower, header, line, options, notes) {
         return found;
     }
-    let Some(time) = lower.iter().position(|name| name == "time" || name == "time_s") else {
-        let expected = "a column time or time_s, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME";
-        return Err(CsvError::unexpected(line, expected, quoted(&header.join(","))));
-    };
+    let (time, unit) = time_column(&lower, header, line, options)?;
     let mut joints: Vec<String> = Vec::new();
     let mut numbers: HashMap<&str, usize> = HashMap::new();
     let mut roles = Vec::with_capacity(header.len());
@@ -224,9 +221,33 @@ pub(super) fn columns(
         let expected = "columns such as NAME.qx, NAME.yz or NAME.z for each joint, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME";
         return Err(CsvError::unexpected(line, expected, quoted(&header.join(","))));
     }
-    let found = Columns { roles, joints, unit: options.time_unit.unwrap_or(TimeUnit::Seconds) };
+    let found = Columns { roles, joints, unit };
     complete(&found, line)?;
     Ok(found)
+}
+
+/// The time column of a table of joints, and its unit: that of our own files, else the only one that is called a time.
+fn time_column(
+    lower: &[String],
+    header: &[String],
+    line: u32,
+    options: &CsvOptions,
+) -> Result<(usize, TimeUnit), CsvError> {
+    if let Some(own) = lower.iter().position(|name| name == "time" || name == "time_s") {
+        return Ok((own, options.time_unit.unwrap_or(TimeUnit::Seconds)));
+    }
+    let mut times = lower.iter().enumerate().filter_map(|(column, name)| Some((column, unit_text(name)?)));
+    let (Some((time, unit)), None) = (times.next(), times.next()) else {
+        let expected =
+            "one column time, time_s, time_ms or time_us, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME";
+        return Err(CsvError::unexpected(line, expected, quoted(&header.join(","))));
+    };
+    let unit = options.time_unit.or_else(|| unit_of(&lower[time], unit));
+    unit.map(|unit| (time, unit)).ok_or_else(|| no_unit(&header[time], line))
+}
+
+fn no_unit(name: &str, line: u32) -> CsvError {
+    CsvError::unexpected(line, "a time with its unit, or --time-unit s, ms or us", quoted(name))
 }
 
 /// Of a table with hundreds of other columns the first few are enough.
@@ -296,8 +317,7 @@ fn sensor_columns(
     let mut times = lower.iter().enumerate().filter_map(|(column, name)| Some((column, unit_text(name)?)));
     let (Some((time, unit)), None) = (times.next(), times.next()) else { return None };
     let Some(unit) = options.time_unit.or_else(|| unit_of(&lower[time], unit)) else {
-        let expected = "a time with its unit, or --time-unit s, ms or us";
-        return Some(Err(CsvError::unexpected(line, expected, quoted(&header[time]))));
+        return Some(Err(no_unit(&header[time], line)));
     };
     let named = NamedColumns { time: header[time].clone(), xyzw: found.map(|column| header[column].clone()) };
     Some(one_joint(header, line, &named, unit, notes))

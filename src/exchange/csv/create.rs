@@ -1,6 +1,6 @@
 //! A new CSV text from any clip.
 
-use std::io::Write as _;
+use std::io::{self, Write};
 
 use crate::clip::{Clip, RotationTrack};
 use crate::exchange::Note;
@@ -15,6 +15,19 @@ use crate::skeleton::{JointKind, Transform};
 /// are written as stored, whatever their sign and length. Notes tell how far the frames are from keys between them, and
 /// of sizes that are animated, which are lost.
 pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
+    let mut bytes = Vec::new();
+    // Writing into a Vec can't fail.
+    let notes = from_clip_to(clip, &mut bytes).unwrap_or_default();
+    (bytes, notes)
+}
+
+/// As [`from_clip`], into `out`: of the text never more than a few rows are at hand.
+///
+/// # Errors
+/// When `out` fails.
+pub fn from_clip_to(clip: &Clip, out: &mut dyn Write) -> io::Result<Vec<Note>> {
+    /// Bytes that are given out at once.
+    const PORTION: usize = 1 << 16;
     let mut notes = Vec::new();
     let mut bytes = Vec::new();
     let skeleton = &clip.skeleton;
@@ -66,10 +79,15 @@ pub fn from_clip(clip: &Clip) -> (Vec<u8>, Vec<Note>) {
             }
         }
         bytes.push(b'\n');
+        if bytes.len() >= PORTION {
+            out.write_all(&bytes)?;
+            bytes.clear();
+        }
     }
+    out.write_all(&bytes)?;
     losses::changing_sizes(clip, &mut notes);
     losses::resampling(clip, &times, &mut notes);
-    (bytes, notes)
+    Ok(notes)
 }
 
 fn turn(clip: &Clip, track: &RotationTrack, frame: usize, time: f64) -> Rotor {

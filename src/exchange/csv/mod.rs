@@ -27,7 +27,7 @@ mod write;
 
 pub use bones::{Bone, bones_of, has_skeleton, hierarchy};
 pub use columns::{CsvOptions, NamedColumns, NoColumns, NoTimeUnit, TimeUnit};
-pub use create::from_clip;
+pub use create::{from_clip, from_clip_to};
 pub use error::{CsvError, CsvErrorKind};
 pub use read::{Document, header, read};
 pub use write::write;

@@ -266,6 +266,22 @@ fn utf_16_reads_alike_and_is_written_back_in_its_own_order() {
 }
 
 #[test]
+fn the_time_of_a_table_of_joints_may_have_its_unit_in_its_name() {
+    for (header, times) in [("Time (s)", "0,0.5"), ("time_ms", "0,500"), ("Timestamp [us]", "0,500000")] {
+        let times: Vec<&str> = times.split(',').collect();
+        let text = format!("hip.z,{header},knee.x\n10,{},20\n30,{},40\n", times[0], times[1]);
+        let (document, clip, notes) = opened(&text);
+        assert_eq!(notes, [] as [&str; 0]);
+        assert_eq!((clip.joints.len(), clip.grid.time(1)), (2, 0.5), "{header}");
+        let degrees = &clip.rotation(1).unwrap().file_angles().unwrap().degrees;
+        assert_eq!(degrees[1], [40.0, 0.0, 0.0]);
+        let (written, _) =
+            write(&document, &clip, &crate::clip::cut(&clip, clip.grid.time(1), clip.grid.time(1)));
+        assert!(String::from_utf8(written).unwrap().ends_with(",40\n"), "{header}");
+    }
+}
+
+#[test]
 fn a_clock_of_microseconds_keeps_its_last_digit() {
     let text = "timestamp_us,qw,qx,qy,qz\n1700000000000001,1,0,0,0\n1700000000000002,1,0,0,0\n1700000000000004,1,0,0,0\n";
     let (document, clip, _) = opened(text);
@@ -355,7 +371,7 @@ fn broken_files_are_refused_with_line_column_expected_and_found() {
         ),
         (
             "a;b;c\n1;2;3\n".to_owned(),
-            "line 1: expected a column time or time_s, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME, found `a,b,c`",
+            "line 1: expected one column time, time_s, time_ms or time_us, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME, found `a,b,c`",
         ),
         (
             semicolons("0.25;", "0,25;"),
@@ -370,7 +386,7 @@ fn broken_files_are_refused_with_line_column_expected_and_found() {
         (with("0.25,1.5", "\"0,25\",1.5"), "line 3, column time: expected a number, found `0,25`"),
         (
             "frame,a.qx,a.qy,a.qz,a.qw\n".to_owned(),
-            "line 1: expected a column time or time_s, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME, found `frame,a.qx,a.qy,a.qz,a.qw`",
+            "line 1: expected one column time, time_s, time_ms or time_us, or --columns time=NAME,w=NAME,x=NAME,y=NAME,z=NAME, found `frame,a.qx,a.qy,a.qz,a.qw`",
         ),
         (
             "time,speed\n0,1\n".to_owned(),
