@@ -336,10 +336,9 @@ impl Window {
         let skeleton: Option<Arc<Skeleton>> = library.skeleton(pass.onto);
         let key = CarryKey { clip, pass, skeleton };
         if self.bench.carry.as_ref().is_none_or(|known| known.key != key) {
-            let runs = self.jobs.is_running(Slot::Carry);
-            let is_asked = self.asked.carry.as_ref() == Some(&key) && runs;
             // A drag asks for others with each frame: what is on its way is let through first.
-            if !is_asked && !(runs && self.bench.preview.is_some()) {
+            let waits = self.asked.carry.as_ref() == Some(&key) || self.bench.preview.is_some();
+            if !(waits && self.jobs.is_running(Slot::Carry)) {
                 self.asked.carry = Some(key.clone());
                 let library = project.library();
                 let own = key.clone();
