@@ -64,7 +64,7 @@ pub enum Clamp {
 pub const USUAL_COMFORT: f64 = 0.8;
 
 /// Below this cosine of half the swing (a swing above 177.7°) the twist is noise and is held.
-const HELD_BELOW: f64 = 0.02;
+pub(super) const HELD_BELOW: f64 = 0.02;
 
 impl Range {
     /// No limit at all.

@@ -4,6 +4,7 @@
 //! sources give them.
 
 pub mod adult;
+mod inside;
 mod interval;
 mod joint_limit;
 mod learn;
@@ -11,6 +12,7 @@ mod limits;
 mod swing;
 mod track_clamp;
 
+pub use inside::{Inside, PROVED_TOGETHER};
 pub use interval::Interval;
 pub use joint_limit::{Clamp, JointLimit, Range, Reading, USUAL_COMFORT};
 pub use learn::{LearnOptions, learned};

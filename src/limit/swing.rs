@@ -38,7 +38,7 @@ pub enum ClampTo {
 
 /// Over so much to both sides of an axis, as the sine of the direction, the semi-axes of two unlike sides blend into each
 /// other (10°): without it the boundary has a step in its curvature there, and a soft clamp a step in acceleration.
-const BLEND_SINE: f64 = 0.173_648_177_666_930_33;
+pub(super) const BLEND_SINE: f64 = 0.173_648_177_666_930_33;
 
 /// Comfort is kept this far inside the limit, so that the soft clamp has room to bend.
 const LARGEST_COMFORT: f64 = 0.98;
@@ -188,7 +188,9 @@ fn scaled(swing: [f64; 2], factor: f64) -> [f64; 2] {
 }
 
 /// From 0 at −1 to 1 at 1, with two derivatives of 0 at both ends.
-fn smooth_step(x: f64) -> f64 {
+#[expect(clippy::inline_always, reason = "a call would keep the loop around it from being widened")]
+#[inline(always)]
+pub(super) fn smooth_step(x: f64) -> f64 {
     let t = (0.5 * (x + 1.0)).clamp(0.0, 1.0);
     t * t * t * (t * (6.0 * t - 15.0) + 10.0)
 }

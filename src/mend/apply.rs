@@ -1,11 +1,14 @@
 //! Applies mends to a clip.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
+use std::sync::Arc;
 
 use glam::DVec3;
+use rayon::prelude::*;
 
-use crate::clip::{Clip, RotationTrack};
-use crate::snag::{Plant, Remedy, Snag};
+use crate::clip::{Clip, JointTracks, PathKind, Paths, RotationTrack, Segments};
+use crate::rotor::Rotor;
+use crate::snag::{LoopClose, Plant, Remedy, Snag};
 
 use super::draft::Draft;
 use super::jitter::{self, Noise};
@@ -44,11 +47,13 @@ fn of_clip(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
     let no_joint = |joint: usize| MendError::NoKeys { joint: joint.to_string() };
     let mut mended = clip.clone();
     let mut plants: Vec<Plant> = Vec::new();
-    for snag in snags {
+    let mut beforehand = loops_of_their_own(clip, snags);
+    for (place, snag) in snags.iter().enumerate() {
         match snag.remedy {
-            Remedy::CloseLoop(how) if snag.joint < clip.joints.len() => {
-                mended = loop_close::close_joint(&mended, snag.joint, how, DVec3::Y);
-            }
+            Remedy::CloseLoop(how) if snag.joint < clip.joints.len() => match beforehand.remove(&place) {
+                Some(tracks) => mended.joints[snag.joint] = tracks,
+                None => mended = loop_close::close_joint(&mended, snag.joint, how, DVec3::Y),
+            },
             Remedy::CloseLoop(_) => return Err(no_joint(snag.joint)),
             Remedy::Hold(plant) => {
                 if let Some(joint) = plant.foot.joints().into_iter().find(|&joint| joint >= clip.joints.len())
@@ -61,6 +66,26 @@ fn of_clip(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
         }
     }
     Ok(if plants.is_empty() { mended } else { plant::hold(&mended, &plants) })
+}
+
+/// The closed loops of joints that ask for nothing but themselves, by their places in `snags`. Roots ask how large the figure stands, which
+/// other joints tell.
+fn loops_of_their_own(clip: &Clip, snags: &[Snag]) -> BTreeMap<usize, Arc<JointTracks>> {
+    let mut seen: BTreeSet<usize> = BTreeSet::new();
+    let own: Vec<(usize, usize, LoopClose)> = snags
+        .iter()
+        .enumerate()
+        .filter_map(|(place, snag)| match snag.remedy {
+            Remedy::CloseLoop(how) if snag.joint < clip.joints.len() => Some((place, snag.joint, how)),
+            _ => None,
+        })
+        // The second of a joint goes by what the first has made.
+        .filter(|(_, joint, _)| seen.insert(*joint) && clip.skeleton.parent_joint(*joint).is_some())
+        .collect();
+    let closed = own.into_par_iter().map(|(place, joint, how)| {
+        (place, loop_close::close_joint(clip, joint, how, DVec3::Y).joints[joint].clone())
+    });
+    closed.collect()
 }
 
 fn of_joints(clip: &Clip, snags: &[Snag]) -> Result<Clip, MendError> {
@@ -208,15 +233,65 @@ pub(super) fn change_of_keys_rad(old: &RotationTrack, new: &RotationTrack, first
     /// Keys that are looked at together.
     const TILE: usize = 1024;
     let last = last.min(old.keys.len().saturating_sub(1));
+    let looked_at = if is_straight(old) && is_straight(new) { widest(old, new, first, last) } else { None };
     let mut largest = 0.0_f64;
+    let mut look = |times: &[f64]| {
+        let pairs = old.at_all(times).into_iter().zip(new.at_all(times));
+        largest = pairs.map(|(old, new)| old.turn_to(new)).fold(largest, f64::max);
+    };
+    if let Some(times) = looked_at {
+        times.chunks(TILE).for_each(&mut look);
+        return largest;
+    }
     for start in (first..=last).step_by(TILE) {
         let end = (start + TILE - 1).min(last);
         let at_keys = (start..=end).map(|key| old.times.at(key));
-        let middles =
-            (start..(end + 1).min(last)).map(|key| 0.5 * (old.times.at(key) + old.times.at(key + 1)));
-        let times: Vec<f64> = at_keys.chain(middles).collect();
-        let pairs = old.at_all(&times).into_iter().zip(new.at_all(&times));
-        largest = pairs.map(|(old, new)| old.turn_to(new)).fold(largest, f64::max);
+        let middles = (start..(end + 1).min(last)).map(|key| middle(old, key));
+        look(&at_keys.chain(middles).collect::<Vec<f64>>());
     }
     largest
+}
+
+fn middle(track: &RotationTrack, key: usize) -> f64 {
+    0.5 * (track.times.at(key) + track.times.at(key + 1))
+}
+
+/// Whether the pose in the middle between two keys is the middle of theirs.
+fn is_straight(track: &RotationTrack) -> bool {
+    track.paths == Paths::Every(PathKind::Slerp) && track.segments == Segments::default()
+}
+
+/// Times among which is that of the largest turn, of the keys `first..=last` and the middles between, told by cosines: all others are
+/// smaller by more than rounding. `None` where a key is no rotation.
+fn widest(old: &RotationTrack, new: &RotationTrack, first: usize, last: usize) -> Option<Vec<f64>> {
+    /// What rounding may do to a cosine, many times over.
+    const ROUNDING: f64 = 1e-12;
+    let mut least = f64::INFINITY;
+    let mut near: Vec<(f64, f64)> = Vec::new();
+    let mut add = |cosine: f64, secs: f64| -> Option<()> {
+        if !cosine.is_finite() {
+            return None;
+        }
+        if cosine <= least + ROUNDING {
+            least = least.min(cosine);
+            near.push((cosine, secs));
+        }
+        Some(())
+    };
+    let cosine = |a: Rotor, b: Rotor| (a.dot(b) / (a.dot(a) * b.dot(b)).sqrt()).abs();
+    let unit = |own: Rotor| own.scale(1.0 / own.norm());
+    let sum = |a: Rotor, b: Rotor| {
+        let (a, b) = (unit(a), unit(b));
+        let b = b.aligned_to(a);
+        Rotor::new(a.s + b.s, a.yz + b.yz, a.zx + b.zx, a.xy + b.xy)
+    };
+    for key in first..=last {
+        let (was, is) = (old.keys[key], new.keys[key]);
+        let after = (key < last).then(|| (old.keys[key + 1], new.keys[key + 1]));
+        add(cosine(was, is), old.times.at(key))?;
+        if let Some((was_after, is_after)) = after.filter(|after| was != is || after.0 != after.1) {
+            add(cosine(sum(was, was_after), sum(is, is_after)), middle(old, key))?;
+        }
+    }
+    Some(near.into_iter().filter(|(own, _)| *own <= least + ROUNDING).map(|(_, secs)| secs).collect())
 }

@@ -1,9 +1,12 @@
 //! A rotation track under mending: numbers that can be changed in place, in the file's own form too.
 
+use std::f64::consts::{PI, TAU};
 use std::ops::{Deref, DerefMut, Range};
 use std::sync::Arc;
 
-use crate::clip::{Degrees, FileAngles, Keys, PathKind, Paths, RotationTrack, Segments, Stored, Times};
+use crate::clip::{
+    Degrees, FileAngles, Keys, PathKind, Paths, RotationTrack, Segments, Stored, Times, continuous_angles_to,
+};
 use crate::rotor::{Axis, Bivector, EulerOrder, Rotor};
 use crate::snag::nearest_plane_angles;
 
@@ -180,6 +183,21 @@ impl Draft {
         self.is_changed = true;
     }
 
+    /// Takes a key's numbers from another track of the same form.
+    pub(super) fn copy_key(&mut self, key: usize, from: &RotationTrack) {
+        self.keys[key] = from.keys[key];
+        match (&mut self.form, &from.stored) {
+            (Form::Angles { degrees, .. }, Stored::Angles(from)) => {
+                degrees.make_mut()[key] = from.degrees[key];
+            }
+            (Form::PlaneAngles(degrees), Stored::PlaneAngles(from)) => {
+                Arc::make_mut(degrees)[key] = from[key];
+            }
+            _ => {}
+        }
+        self.touch(key);
+    }
+
     /// Adds `step` to one of the file angles of some keys, `times` times, as if each sum were rounded.
     ///
     /// A sum of whole turns is rounded where it comes to be so large that it has a digit less, and between two such places not at all.
@@ -216,6 +234,32 @@ impl Draft {
         self.is_changed = true;
     }
 
+    /// A key's three angles as the file stores them, in degrees; `None` where it stores none, or fewer.
+    pub(super) fn triple(&self, key: usize) -> Option<[f64; 3]> {
+        match &self.form {
+            Form::Angles { axes, degrees, .. } if axes.len() == 3 => degrees.get(key).copied(),
+            _ => None,
+        }
+    }
+
+    /// Chooses the angles of `first..=last` anew where, near a pole, they have come to end as the mirrored triple against the key after them:
+    /// of the equal triples those that step least, both sides counted. `was` is the triple of `last` before it was given another pose; where
+    /// that was the mirrored one already, it is the file's own fault and stays.
+    pub(super) fn meet_after(&mut self, first: usize, last: usize, was: [f64; 3]) {
+        let (Some(own), Some(after)) = (self.triple(last), self.triple(last + 1)) else { return };
+        let Form::Angles { order, degrees, .. } = &mut self.form else { return };
+        let order = *order;
+        let [own, after, was] = [own, after, was].map(|triple| triple.map(f64::to_radians));
+        if !is_mirrored(order, own, after) || is_mirrored(order, was, after) {
+            return;
+        }
+        let near = degrees[first.saturating_sub(1)].map(f64::to_radians);
+        let Some(found) = angles_between(order, &self.keys[first..=last], near, after) else { return };
+        for (own, triple) in Arc::make_mut(degrees)[first..=last].iter_mut().zip(found) {
+            *own = triple.map(f64::to_degrees);
+        }
+    }
+
     /// Another orientation; unit. Its numbers are the nearest to those of the key before (at the start, to those of the
     /// key after). `was` is how the key is played so far.
     pub(super) fn set_pose(&mut self, key: usize, rotor: Rotor, was: Rotor) {
@@ -225,14 +269,16 @@ impl Draft {
             Form::Rotors => {}
             Form::Angles { axes, order, degrees } => {
                 let near = finite_or_zero(degrees[near]).map(f64::to_radians);
-                let triple = order.nearest_equal(order.from_rotor(rotor, near[2]), near);
-                let mirrored = order.nearest_equal(order.mirrored(triple), order.mirrored(near));
-                // Angles the file has no channel for stay 0, so the triple nearest to that serves.
-                let outside = |triple: &[f64; 3]| {
-                    triple[axes.len().min(3)..].iter().map(|angle| angle.sin().abs()).sum::<f64>()
-                };
-                let mut triple = if outside(&mirrored) + 1e-9 < outside(&triple) { mirrored } else { triple };
+                let mut triple = order.nearest_equal(order.from_rotor(rotor, near[2]), near);
                 if axes.len() < 3 {
+                    // Angles the file has no channel for stay 0, so the triple nearest to that serves.
+                    let mirrored = order.nearest_equal(order.mirrored(triple), order.mirrored(near));
+                    let outside = |triple: &[f64; 3]| {
+                        triple[axes.len()..].iter().map(|angle| angle.sin().abs()).sum::<f64>()
+                    };
+                    if outside(&mirrored) + 1e-9 < outside(&triple) {
+                        triple = mirrored;
+                    }
                     triple[axes.len()..].fill(0.0);
                     rotor = order.to_rotor(triple).aligned_to(rotor);
                 }
@@ -249,6 +295,110 @@ impl Draft {
     }
 }
 
+/// Angles in radians for `keys` between the triples `before` and `after`, which are their own and not the mirrored ones beside both. `None`
+/// where there are no such.
+fn angles_between(
+    order: EulerOrder,
+    keys: &[Rotor],
+    before: [f64; 3],
+    after: [f64; 3],
+) -> Option<Vec<[f64; 3]>> {
+    /// A step past a pole may be taken either way round, by so much at most.
+    const MOST_STEP: f64 = 1.25 * PI;
+    let turns = [0.0, -TAU, TAU];
+    let shifts = (0..27_usize).map(|case| [turns[case % 3], turns[case / 3 % 3], turns[case / 9]]);
+    let mut found = shifts
+        .map(|shift| {
+            let end: [f64; 3] = std::array::from_fn(|i| after[i] + shift[i]);
+            continuous_angles_to(order, keys, before, Some(end))
+        })
+        .find(|found| found.last().is_some_and(|last| !is_mirrored(order, *last, after)))?;
+    for channel in 0..3 {
+        let last = found.last()?[channel];
+        let missing = TAU * ((after[channel] - last) / TAU).round();
+        if missing == 0.0 {
+            continue;
+        }
+        // The other way round where that is hardly farther.
+        let step = |key: usize| {
+            let before = key.checked_sub(1).map_or(before[channel], |key| found[key][channel]);
+            (found[key][channel] - before + missing).abs()
+        };
+        let key = (0..found.len()).min_by(|a, b| step(*a).total_cmp(&step(*b)))?;
+        if step(key) > MOST_STEP {
+            return None;
+        }
+        found[key..].iter_mut().for_each(|triple| triple[channel] += missing);
+    }
+    Some(found)
+}
+
+/// Whether the mirrored triple of `own`, in radians, lies nearer to `near` than itself, whole turns aside; both finite.
+fn is_mirrored(order: EulerOrder, own: [f64; 3], near: [f64; 3]) -> bool {
+    /// As the finder of mirrored angles: what noise near a pole gains is less.
+    const SWITCH_COST: f64 = (15.0 / 180.0 * PI) * (15.0 / 180.0 * PI);
+    let cost = |triple: [f64; 3]| -> f64 {
+        let step = |(own, near): (f64, f64)| own - near - TAU * ((own - near) / TAU).round();
+        triple.into_iter().zip(near).map(|both| step(both).powi(2)).sum()
+    };
+    cost(order.mirrored(own)) + SWITCH_COST < cost(own)
+}
+
 fn finite_or_zero(triple: [f64; 3]) -> [f64; 3] {
     if triple.iter().all(|angle| angle.is_finite()) { triple } else { [0.0; 3] }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Angles that pass a pole, `[z, x, y]` of ZXY: the middle one comes near 90° at key 20.
+    fn triples() -> Vec<[f64; 3]> {
+        (0..40)
+            .map(|key| {
+                let t = f64::from(key - 20) / 20.0;
+                [40.0 * t, 86.0 - 60.0 * t * t, 10.0 + 5.0 * t]
+            })
+            .collect()
+    }
+
+    fn draft(degrees: Vec<[f64; 3]>) -> Draft {
+        let axes = EulerOrder::ZXY.axes().to_vec();
+        let angles = FileAngles { axes, order: EulerOrder::ZXY, degrees: degrees.into() };
+        let times = Times::Even { step_secs: 0.01, count: angles.degrees.len() };
+        Draft::new(&RotationTrack::from_angles(times, angles))
+    }
+
+    fn largest_step(draft: &Draft, channel: usize) -> f64 {
+        let triple = |key: usize| draft.triple(key).unwrap()[channel];
+        (1..draft.len()).map(|key| (triple(key) - triple(key - 1)).abs()).fold(0.0, f64::max)
+    }
+
+    #[test]
+    fn angles_that_have_come_to_the_other_branch_are_brought_back() {
+        let truth = triples();
+        let mut draft = draft(truth.clone());
+        // As a chain of nearest triples may come out on the other side of the pole.
+        let Form::Angles { degrees, .. } = &mut draft.form else { unreachable!() };
+        for own in &mut Arc::make_mut(degrees)[20..30] {
+            *own = [own[0] + 180.0, 180.0 - own[1], own[2] - 180.0];
+        }
+        assert!(largest_step(&draft, 0) > 170.0);
+        draft.meet_after(10, 29, truth[29]);
+        for (key, truth) in truth.iter().enumerate() {
+            let own = draft.triple(key).unwrap();
+            assert!(own.iter().zip(truth).all(|(own, truth)| (own - truth).abs() < 1e-6), "{key}: {own:?}");
+        }
+    }
+
+    #[test]
+    fn a_mirrored_run_of_the_file_itself_stays_for_its_finder() {
+        let mut degrees = triples();
+        for own in &mut degrees[30..] {
+            *own = [own[0] + 180.0, 180.0 - own[1], own[2] - 180.0];
+        }
+        let mut draft = draft(degrees.clone());
+        draft.meet_after(10, 29, degrees[29]);
+        assert!((0..40).all(|key| draft.triple(key) == Some(degrees[key])));
+    }
 }

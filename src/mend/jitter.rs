@@ -52,8 +52,13 @@ const TURNS: usize = 5;
 const LEAST_QUIET_RAD: f64 = 3e-4;
 const MOST_WEIGHT: f64 = 1e4;
 
-/// No pose is moved by more than so many deviations of the noise.
+/// No pose is moved by more than so many deviations of the noise, but for outliers.
 const MOST_DEVIATIONS: f64 = 6.0;
+
+/// So few keys in a row that lie farther off are spikes in the noise: they tell nothing, and are drawn from the poses around. Taking them out
+/// shows others that they had hidden, in so many rounds.
+const MOST_OUTLIERS: usize = 4;
+const OUTLIER_ROUNDS: usize = 2;
 
 /// Joints that turn further than this from their middle pose are taken relative to a slow motion of their own, this slow.
 const WIDE_RAD: f64 = 2.0;
@@ -107,15 +112,29 @@ fn smoothed(
     let weight = (noise.sigma_rad / noise.quiet_rad.max(LEAST_QUIET_RAD)).powi(2).clamp(1.0, MOST_WEIGHT);
     let trembles = first - from..last + 1 - from;
     let weights = (0..to - from).map(|i| if trembles.contains(&i) { 1.0 } else { weight }).collect();
-    let task = Task { own, features, weights, trembles, step_secs, apart: noise.apart_keys.max(1) };
-    let fitted = task.fitted(noise.sigma_rad)?;
-
+    let mut task = Task { own, features, weights, trembles, step_secs, apart: noise.apart_keys.max(1) };
     let most = MOST_DEVIATIONS * noise.sigma_rad;
-    let smoothed = task.trembles.clone().map(|i| {
+    let change_of = |fitted: &Table, i: usize| {
         let row = fitted.row(i);
         let pose = base[i] * Rotor::from_plane_angles(Bivector::new(row[0], row[1], row[2]));
-        let change = (poses[i].reverse() * pose).plane_angles();
-        let share = (most / change.length().max(f64::MIN_POSITIVE)).min(1.0);
+        (poses[i].reverse() * pose).plane_angles()
+    };
+    let mut fitted = task.fitted(noise.sigma_rad)?;
+    for _ in 0..OUTLIER_ROUNDS {
+        let far: Vec<usize> =
+            task.trembles.clone().filter(|&i| change_of(&fitted, i).length() > most).collect();
+        let few = far.chunk_by(|a, b| b - a == 1).filter(|run| run.len() <= MOST_OUTLIERS);
+        let new: Vec<usize> = few.flatten().copied().filter(|&i| task.weights[i] > 0.0).collect();
+        if new.is_empty() {
+            break;
+        }
+        new.into_iter().for_each(|i| task.weights[i] = 0.0);
+        fitted = task.fitted(noise.sigma_rad)?;
+    }
+    let smoothed = task.trembles.clone().map(|i| {
+        let change = change_of(&fitted, i);
+        let is_outlier = task.weights[i] <= 0.0;
+        let share = if is_outlier { 1.0 } else { (most / change.length().max(f64::MIN_POSITIVE)).min(1.0) };
         (poses[i] * Rotor::from_plane_angles(change * share)).normalize()
     });
     Some(smoothed.collect())
@@ -232,7 +251,9 @@ impl Task {
         }
         let mut errors = vec![0.0; self.trembles.len()];
         for turn in 0..TURNS {
-            let is_out = |i: usize| self.trembles.contains(&i) && i / self.apart % TURNS == turn;
+            let is_out = |i: usize| {
+                self.trembles.contains(&i) && self.weights[i] > 0.0 && i / self.apart % TURNS == turn
+            };
             let weights: Vec<f64> =
                 self.weights.iter().enumerate().map(|(i, own)| if is_out(i) { 0.0 } else { *own }).collect();
             let fitted = self.fit(&weights, choice)?;

@@ -2,8 +2,11 @@
 
 use glam::DVec3;
 
-use crate::clip::{Clip, JointTracks, LoopSeam, PathKind, Times, VectorTrack, ends_on_first_pose};
-use crate::rotor::Bivector;
+use crate::clip::{
+    Clip, FileAngles, JointTracks, LoopSeam, PathKind, Paths, RotationTrack, Stored, Times, VectorTrack,
+    ends_on_first_pose,
+};
+use crate::rotor::{Bivector, Rotor};
 use crate::snag::{LoopClose, LoopForm};
 
 use super::draft::Draft;
@@ -71,37 +74,143 @@ pub fn close_loop(clip: &Clip, options: &LoopOptions) -> (Clip, LoopReport) {
 /// Rates are told from a few frames, which the change bends: so often they are told anew.
 const ROUNDS: usize = 3;
 
-/// The clip with the loop of one joint closed.
+/// The clip with the loop of one joint closed. Keys to which nothing is added keep their numbers.
 pub(super) fn close_joint(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> Clip {
-    let rounds = if how.with_rate || !how.is_first_again { ROUNDS } else { 1 };
-    (0..rounds).fold(clip.clone(), |clip, _| closer(&clip, joint, how, up))
+    if how.is_first_again && !how.with_rate {
+        return round(clip, joint, how, up);
+    }
+    closed_by_its_ends(clip, joint, how, up)
+        .unwrap_or_else(|| (0..ROUNDS).fold(clip.clone(), |clip, _| round(&clip, joint, how, up)))
 }
 
-fn closer(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> Clip {
-    let seam = LoopSeam::of(clip, joint, how.is_first_again, up);
-    let Some(last) = clip.grid.count().checked_sub(1).filter(|&last| last > 0) else { return clip.clone() };
-    let (from, to) = (clip.grid.time(0), clip.grid.time(last));
-    let step = (to - from) / last as f64;
-    // glTF: the last key may lie a little before the frame nearest to it.
-    let to = to.min(clip.duration_secs.max(from + 0.5 * step));
-    // End keys are held outside: there the change is the end's too.
-    let shape = |times: &Times| {
-        let (first, last) = times.span().unwrap_or((from, to));
-        let (from, to) = (from.max(first.min(to)), to.min(last.max(from)));
-        Shape { from, secs: (to - from).max(step) + if how.is_first_again { 0.0 } else { step }, how }
+fn round(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> Clip {
+    match Change::new(clip, joint, how, up) {
+        Some(change) => changed(clip, joint, &change),
+        None => clip.clone(),
+    }
+}
+
+/// Frames at each end that a seam is told from, and one more.
+const END_FRAMES: usize = 6;
+
+/// The same as round after round, with each key written once: what a round changes is told from the keys at both ends alone. `None` where
+/// the poses of frames are not the keys', each for itself.
+fn closed_by_its_ends(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> Option<Clip> {
+    let track = clip.rotation(joint)?;
+    let count = track.keys.len();
+    let is_whole = track.file_angles().is_none_or(|angles| angles.axes.len() == 3);
+    let passes_keys = matches!(track.paths, Paths::Every(kind) if kind != PathKind::BSpline);
+    let is_key_by_key = passes_keys && track.tangents.is_none() && track.times == clip.grid.times;
+    if !is_key_by_key || !is_whole || count < 4 * END_FRAMES {
+        return None;
+    }
+    let ends: Vec<usize> = (0..END_FRAMES).chain(count - END_FRAMES..count).collect();
+    if ends.iter().any(|&key| track.keys[key].try_normalize().is_none()) {
+        return None;
+    }
+    let mut before_last = clip.clone();
+    let mut rounded = clip.with_rotation(joint, of_keys(track, &ends));
+    let mut changes = Vec::with_capacity(ROUNDS);
+    for _ in 0..ROUNDS {
+        let change = Change::new(&rounded, joint, how, up)?;
+        let next = changed(&rounded, joint, &change);
+        before_last = std::mem::replace(&mut rounded, next);
+        changes.push(change);
+    }
+    let mut draft = Draft::new(track);
+    // The first key is aligned to the second as the round before the last has left that.
+    draft.copy_key(1, before_last.rotation(joint)?);
+    let shapes: Vec<(Shape, &Change)> =
+        changes.iter().map(|change| (change.shape(&track.times), change)).collect();
+    for key in 0..count {
+        let secs = draft.secs(key);
+        if shapes.iter().all(|(shape, change)| shape.is_calm(secs, change)) {
+            continue;
+        }
+        let was = track.sound_key(key);
+        let pose = shapes.iter().fold(was, |pose, (shape, change)| {
+            (pose.normalize() * Rotor::from_plane_angles(change.turn(shape, secs))).normalize()
+        });
+        draft.set_pose(key, pose, was);
+    }
+    let rotation = Some(draft.finish().unwrap_or_else(|| track.clone()));
+    let mut closed = clip.clone();
+    closed.joints[joint] = JointTracks { rotation, ..(*rounded.joints[joint]).clone() }.into();
+    Some(closed)
+}
+
+/// Some keys of a track by themselves.
+fn of_keys(track: &RotationTrack, keys: &[usize]) -> RotationTrack {
+    let stored = match &track.stored {
+        Stored::Rotors => Stored::Rotors,
+        Stored::Angles(angles) => {
+            let degrees: Vec<[f64; 3]> = keys.iter().map(|&key| angles.degrees[key]).collect();
+            Stored::Angles(FileAngles { degrees: degrees.into(), ..angles.clone() })
+        }
+        Stored::PlaneAngles(degrees) => Stored::PlaneAngles(keys.iter().map(|&key| degrees[key]).collect()),
     };
+    let times: Vec<f64> = keys.iter().map(|&key| track.times.at(key)).collect();
+    let rotors: Vec<Rotor> = keys.iter().map(|&key| track.keys[key]).collect();
+    RotationTrack { stored, ..RotationTrack::from_rotors(Times::Listed(times.into()), rotors) }
+}
+
+/// What closes the loop of a joint.
+struct Change {
+    seam: LoopSeam,
+    /// The first and the last frame's time.
+    from: f64,
+    to: f64,
+    step: f64,
+    how: LoopClose,
+}
+
+impl Change {
+    /// `None` for a clip without a step.
+    fn new(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> Option<Self> {
+        let seam = LoopSeam::of(clip, joint, how.is_first_again, up);
+        let last = clip.grid.count().checked_sub(1).filter(|&last| last > 0)?;
+        let (from, to) = (clip.grid.time(0), clip.grid.time(last));
+        let step = (to - from) / last as f64;
+        // glTF: the last key may lie a little before the frame nearest to it.
+        let to = to.min(clip.duration_secs.max(from + 0.5 * step));
+        Some(Self { seam, from, to, step, how })
+    }
+
+    /// End keys are held outside: there the change is the end's too.
+    fn shape(&self, times: &Times) -> Shape {
+        let (first, last) = times.span().unwrap_or((self.from, self.to));
+        let (from, to) = (self.from.max(first.min(self.to)), self.to.min(last.max(self.from)));
+        let beyond = if self.how.is_first_again { 0.0 } else { self.step };
+        Shape { from, secs: (to - from).max(self.step) + beyond, how: self.how }
+    }
+
+    /// By what a pose is turned on the bone side.
+    fn turn(&self, shape: &Shape, secs: f64) -> Bivector {
+        let [share, rate] = shape.at(secs, self.seam.turn.length());
+        let lift = if self.how.with_rate { self.seam.turn_rate * rate } else { Bivector::ZERO };
+        self.seam.turn * share + lift
+    }
+
+    /// By what a place is moved.
+    fn way(&self, shape: &Shape, secs: f64) -> DVec3 {
+        let [share, rate] = shape.at(secs, 0.0);
+        let lift = if self.how.with_rate { self.seam.place_rate * rate } else { DVec3::ZERO };
+        self.seam.place * share + lift
+    }
+}
+
+fn changed(clip: &Clip, joint: usize, change: &Change) -> Clip {
     let mut closed = clip.clone();
     if let Some(track) = clip.rotation(joint).filter(|track| !track.keys.is_empty()) {
-        let angle = seam.turn.length();
         let mut draft = Draft::new(track);
-        let shape = shape(&track.times);
+        let shape = change.shape(&track.times);
         for key in 0..draft.len() {
             let secs = draft.secs(key);
-            let [share, rate] = shape.at(secs, angle);
-            let change =
-                seam.turn * share + if how.with_rate { seam.turn_rate * rate } else { Bivector::ZERO };
+            if shape.is_calm(secs, change) {
+                continue;
+            }
             let was = track.sound_key(key);
-            let by = crate::rotor::Rotor::from_plane_angles(change);
+            let by = Rotor::from_plane_angles(change.turn(&shape, secs));
             if let (Some(tangents), PathKind::Cubic) =
                 (&track.tangents, track.paths.of(key.min(draft.len().saturating_sub(2))))
             {
@@ -118,17 +227,15 @@ fn closer(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> Clip {
             closed = closed.with_rotation(joint, track);
         }
     }
-    let moves = seam.place.length() > 0.0 || (how.with_rate && seam.place_rate.length() > 0.0);
+    let seam = &change.seam;
+    let moves = seam.place.length() > 0.0 || (change.how.with_rate && seam.place_rate.length() > 0.0);
     if let Some(track) = clip.joints[joint].translation.as_ref().filter(|_| moves) {
-        let shape = shape(&track.times);
+        let shape = change.shape(&track.times);
         let keys: Vec<DVec3> = track
             .times
             .iter()
             .zip(track.keys.iter())
-            .map(|(secs, place)| {
-                let [share, rate] = shape.at(secs, 0.0);
-                *place + seam.place * share + if how.with_rate { seam.place_rate * rate } else { DVec3::ZERO }
-            })
+            .map(|(secs, place)| *place + change.way(&shape, secs))
             .collect();
         let track = VectorTrack { keys: keys.into(), ..track.clone() };
         let tracks = JointTracks { translation: Some(track), ..(*closed.joints[joint]).clone() };
@@ -146,20 +253,44 @@ struct Shape {
 }
 
 impl Shape {
+    /// Whether nothing is added to the turn at a time.
+    fn is_calm(&self, secs: f64, change: &Change) -> bool {
+        let (since, until) = self.since_and_until(secs);
+        let reach = match self.how.form {
+            LoopForm::Spread if change.seam.turn != Bivector::ZERO => return false,
+            LoopForm::Spread => self.rate_window(),
+            LoopForm::Window => self.window(change.seam.turn.length()).max(self.rate_window()),
+        };
+        since >= reach && until >= reach
+    }
+
+    /// Seconds since the start of the round and until its end.
+    fn since_and_until(&self, secs: f64) -> (f64, f64) {
+        let u = ((secs - self.from) / self.secs).clamp(0.0, 1.0);
+        (u * self.secs, (1.0 - u) * self.secs)
+    }
+
+    /// How far from the seam a difference is brought in. A smooth step is 1.5 times as fast in its middle as it is on the whole.
+    fn window(&self, angle_rad: f64) -> f64 {
+        WINDOW_SECS.max(0.75 * angle_rad / WINDOW_RATE).min(0.5 * self.secs)
+    }
+
+    fn rate_window(&self) -> f64 {
+        RATE_SECS.min(0.5 * self.secs)
+    }
+
     /// What share of the difference in pose is added at a time, −½ at the start to ½ at the end; and the seconds by which
     /// the difference in rate counts. `angle_rad` is the difference.
     fn at(&self, secs: f64, angle_rad: f64) -> [f64; 2] {
-        let u = ((secs - self.from) / self.secs).clamp(0.0, 1.0);
-        let (since, until) = (u * self.secs, (1.0 - u) * self.secs);
+        let (since, until) = self.since_and_until(secs);
         let share = match self.how.form {
-            LoopForm::Spread => u - 0.5,
+            LoopForm::Spread => ((secs - self.from) / self.secs).clamp(0.0, 1.0) - 0.5,
             LoopForm::Window => {
-                // A smooth step is 1.5 times as fast in its middle as it is on the whole.
-                let window = WINDOW_SECS.max(0.75 * angle_rad / WINDOW_RATE).min(0.5 * self.secs);
+                let window = self.window(angle_rad);
                 0.5 * (faded(until / window) - faded(since / window))
             }
         };
-        let window = RATE_SECS.min(0.5 * self.secs);
+        let window = self.rate_window();
         // A cubic that begins at 0 with slope 1 and ends flat.
         let lift = |t: f64| if t < 1.0 { window * t * (1.0 - t) * (1.0 - t) } else { 0.0 };
         // Half the gap is added to the end's rate, half taken from the start's.
@@ -171,4 +302,72 @@ impl Shape {
 fn faded(t: f64) -> f64 {
     let t = t.min(1.0);
     2.0 * t * t * t - 3.0 * t * t + 1.0
+}
+
+#[cfg(test)]
+mod tests {
+    use std::sync::Arc;
+
+    use super::*;
+    use crate::clip::FrameGrid;
+    use crate::rotor::EulerOrder;
+    use crate::skeleton::{Joint, Skeleton};
+
+    /// Two joints that swing on, so that neither pose nor rate meets; the lower one's heading wraps.
+    fn clip(frames: usize, wide_deg: f64) -> Clip {
+        let times = Times::Even { step_secs: 1.0 / 60.0, count: frames };
+        let track = |joint: usize| {
+            let degrees: Vec<[f64; 3]> = (0..frames)
+                .map(|frame| {
+                    let t = frame as f64 / 60.0 + joint as f64;
+                    [wide_deg * (1.3 * t).sin(), 20.0 * (2.1 * t).cos(), 170.0 + 30.0 * (0.7 * t).sin()]
+                })
+                .collect();
+            let angles = FileAngles {
+                axes: EulerOrder::ZXY.axes().to_vec(),
+                order: EulerOrder::ZXY,
+                degrees: degrees.into(),
+            };
+            RotationTrack::from_angles(times.clone(), angles)
+        };
+        let joints = [Joint::placed("hip", 0, None, DVec3::Y), Joint::placed("knee", 1, Some(0), DVec3::Y)];
+        let tracks = [0, 1]
+            .map(|joint| Arc::new(JointTracks { rotation: Some(track(joint)), ..JointTracks::default() }));
+        Clip {
+            name: String::new(),
+            joints: tracks.to_vec(),
+            skeleton: Arc::new(Skeleton::new(joints.to_vec()).unwrap()),
+            grid: FrameGrid { times: times.clone(), rate: 60.0 },
+            duration_secs: times.span().unwrap().1,
+        }
+    }
+
+    #[test]
+    fn told_by_the_ends_a_loop_is_closed_as_round_after_round() {
+        for (wide_deg, form) in [(4.0, LoopForm::Spread), (50.0, LoopForm::Window)] {
+            for is_first_again in [false, true] {
+                let how = LoopClose { form, is_first_again, with_rate: true };
+                let clip = clip(400, wide_deg);
+                let rounds = (0..ROUNDS).fold(clip.clone(), |clip, _| round(&clip, 1, how, DVec3::Y));
+                let at_once = closed_by_its_ends(&clip, 1, how, DVec3::Y).unwrap();
+                let [old, new, was] = [&rounds, &at_once, &clip].map(|clip| clip.rotation(1).unwrap());
+                let mut untouched = 0;
+                for key in 0..400 {
+                    let apart = old.keys[key].turn_to(new.keys[key]);
+                    assert!(apart < 1e-14, "{form:?}, key {key}: {apart}");
+                    let [a, b] = [old, new].map(|track| track.file_angles().unwrap().degrees[key]);
+                    assert!(
+                        a.iter().zip(b).all(|(a, b)| (a - b).abs() < 1e-11),
+                        "{form:?}, key {key}: {a:?} {b:?}"
+                    );
+                    untouched += usize::from(new.keys[key] == was.keys[key]);
+                }
+                assert!(untouched > 100 || form == LoopForm::Spread, "{form:?}: {untouched} untouched");
+                let left = LoopSeam::of(&at_once, 1, is_first_again, DVec3::Y);
+                let missed = LoopSeam::of(&clip, 1, is_first_again, DVec3::Y);
+                assert!(left.turn.length() < 1e-3 * missed.turn.length());
+                assert!(left.turn_rate.length() < 0.1 * missed.turn_rate.length());
+            }
+        }
+    }
 }

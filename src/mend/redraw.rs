@@ -48,7 +48,7 @@ fn led(draft: &Draft, held: usize, keys: std::ops::RangeInclusive<usize>) -> Vec
         held + 1..(held + 1 + LEAD_FIT).min(draft.len())
     };
     let is_moving = beside.len() >= LEAD_FIT && !draft.is_held_after(held);
-    let rate = fitted_rate(draft, held, beside).filter(|_| is_moving).unwrap_or(Bivector::ZERO);
+    let rate = rate_of(&offsets(draft, held, beside)).filter(|_| is_moving).unwrap_or(Bivector::ZERO);
     keys.map(|key| (pose * Rotor::from_plane_angles(rate * (draft.secs(key) - draft.secs(held)))).normalize())
         .collect()
 }
@@ -57,9 +57,14 @@ fn led(draft: &Draft, held: usize, keys: std::ops::RangeInclusive<usize>) -> Vec
 pub(super) fn write(draft: &mut Draft, first: usize, poses: &[Rotor]) {
     let near = draft.sound_before(first).or_else(|| draft.sound_after(first));
     let mut played = near.and_then(|key| draft.unit(key)).unwrap_or(Rotor::IDENTITY);
+    let last = first + poses.len().max(1) - 1;
+    let was = draft.triple(last);
     for (key, pose) in (first..).zip(poses) {
         played = draft.unit(key).unwrap_or(played);
         draft.set_pose(key, *pose, played);
+    }
+    if let Some(was) = was.filter(|_| !poses.is_empty()) {
+        draft.meet_after(first, last, was);
     }
     if draft.tangents.is_some() {
         for key in first..first + poses.len() {
@@ -89,37 +94,26 @@ fn bridge(draft: &Draft, left: usize, right: usize) -> impl Iterator<Item = Roto
 /// length in the sound motion around, so that noise, which makes rates worthless, tells against it by itself.
 fn best_fit(draft: &Draft, left: usize, right: usize) -> (usize, f64) {
     let gap = right - left;
-    let mut best = (0, 0.0);
-    let mut least_left = WORTH;
-    for fit in FITS {
-        let before = left.saturating_sub(TRIAL_KEYS.max(2 * gap))..=left;
-        let after = right..=(right + TRIAL_KEYS.max(2 * gap)).min(draft.len() - 1);
-        let stride = (gap / 4).max(1);
-        let (mut rr, mut rc, mut cc, mut trials) = (0.0, 0.0, 0.0, 0);
-        for side in [before, after] {
-            let (low, high) = (*side.start(), *side.end());
-            for start in (low + fit - 1..=high).step_by(stride) {
-                if start + gap + fit - 1 > high {
-                    break;
-                }
-                let middle = start + gap / 2;
-                let (Some(a), Some(truth), Some(b)) =
-                    (draft.unit(start), draft.unit(middle), draft.unit(start + gap))
-                else {
-                    continue;
-                };
-                let share =
-                    (draft.secs(middle) - draft.secs(start)) / (draft.secs(start + gap) - draft.secs(start));
-                let straight = slerp(a, b, share);
-                let Some(curve) = Hermite::new(draft, start, start + gap, fit) else { continue };
-                let missed = (straight.reverse() * truth).plane_angles();
-                let offered = (straight.reverse() * curve.at(share)).plane_angles();
-                rr += missed.dot(missed);
-                rc += missed.dot(offered);
-                cc += offered.dot(offered);
-                trials += 1;
+    let before = left.saturating_sub(TRIAL_KEYS.max(2 * gap))..=left;
+    let after = right..=(right + TRIAL_KEYS.max(2 * gap)).min(draft.len() - 1);
+    let stride = (gap / 4).max(1);
+    let mut tried = FITS.map(|_| Tried::default());
+    for side in [before, after] {
+        let (low, high) = (*side.start(), *side.end());
+        for start in low..=high.saturating_sub(gap) {
+            let is_asked = FITS.map(|fit| {
+                start >= low + fit - 1
+                    && (start - (low + fit - 1)).is_multiple_of(stride)
+                    && start + gap + fit - 1 <= high
+            });
+            if is_asked.contains(&true) {
+                try_gap(draft, start, gap, is_asked, &mut tried);
             }
         }
+    }
+    let mut best = (0, 0.0);
+    let mut least_left = WORTH;
+    for (fit, Tried { rr, rc, cc, trials }) in FITS.into_iter().zip(tried) {
         if trials >= TRIALS && cc > 0.0 {
             let weight = (rc / cc).clamp(0.0, 1.0);
             let left_over = (rr - 2.0 * weight * rc + weight * weight * cc) / rr.max(f64::MIN_POSITIVE);
@@ -132,6 +126,54 @@ fn best_fit(draft: &Draft, left: usize, right: usize) -> (usize, f64) {
     best
 }
 
+/// What pretended gaps have shown: sums of products of what slerp misses and what the bridge offers.
+#[derive(Clone, Copy, Default)]
+struct Tried {
+    rr: f64,
+    rc: f64,
+    cc: f64,
+    trials: usize,
+}
+
+/// Tries one pretended gap with the fits that are asked for.
+fn try_gap(
+    draft: &Draft,
+    start: usize,
+    gap: usize,
+    is_asked: [bool; FITS.len()],
+    tried: &mut [Tried; FITS.len()],
+) {
+    let middle = start + gap / 2;
+    let (Some(a), Some(truth), Some(b)) = (draft.unit(start), draft.unit(middle), draft.unit(start + gap))
+    else {
+        return;
+    };
+    let Some(way) = Way::new(draft, start, start + gap) else { return };
+    let share = (draft.secs(middle) - draft.secs(start)) / (draft.secs(start + gap) - draft.secs(start));
+    let straight = slerp(a, b, share);
+    let missed = (straight.reverse() * truth).plane_angles();
+    // The poses of the widest fit serve the narrower ones too.
+    let farthest =
+        FITS.iter().zip(is_asked).filter(|(_, asked)| *asked).map(|(fit, _)| *fit).max().unwrap_or(0);
+    let before = offsets(draft, start, (start + 1).saturating_sub(farthest)..start);
+    let after = offsets(draft, start + gap, start + gap + 1..(start + gap + farthest).min(draft.len()));
+    for ((fit, asked), tried) in FITS.into_iter().zip(is_asked).zip(tried) {
+        if !asked {
+            continue;
+        }
+        let first = before.partition_point(|(key, ..)| *key < start + 1 - fit);
+        let last = after.partition_point(|(key, ..)| *key < start + gap + fit);
+        let rates = (rate_of(&before[first..]), rate_of(&after[..last]));
+        let (Some(rate_left), Some(rate_right)) = rates else { continue };
+        let curve = way.with_rates(rate_left, rate_right);
+        let offered = (straight.reverse() * curve.at(share)).plane_angles();
+        tried.rr += missed.dot(missed);
+        tried.rc += missed.dot(offered);
+        tried.cc += offered.dot(offered);
+        tried.trials += 1;
+    }
+}
+
 /// A cubic in the plane angles against the left end, with fitted rates at both ends.
 pub(super) struct Hermite {
     from: Rotor,
@@ -142,22 +184,10 @@ pub(super) struct Hermite {
 impl Hermite {
     /// Rates are fitted over `fit` keys on each side. `None` where there are none, or the way across has no sure side.
     pub(super) fn new(draft: &Draft, left: usize, right: usize, fit: usize) -> Option<Self> {
-        let (a, b) = (draft.unit(left)?, draft.unit(right)?);
-        let secs = draft.secs(right) - draft.secs(left);
-        let to = (a.reverse() * b).plane_angles();
-        if to.length() > WIDE_RAD || secs <= 0.0 {
-            return None;
-        }
-        let lowest = (left + 1).saturating_sub(fit);
-        let rate_left = fitted_rate(draft, left, lowest..left)?;
-        let rate_right = fitted_rate(draft, right, right + 1..(right + fit).min(draft.len()))?;
-        // The slope of the plane angles at the right end, by a small step along its rate.
-        let small = 1e-4 / rate_right.length().max(1e-9);
-        let near = |sign: f64| {
-            (a.reverse() * b * Rotor::from_plane_angles(rate_right * (sign * small))).plane_angles()
-        };
-        let slope_right = (near(1.0) - near(-1.0)) * (0.5 / small);
-        Some(Self { from: a, to, slopes: [rate_left * secs, slope_right * secs] })
+        let way = Way::new(draft, left, right)?;
+        let rate_left = rate_of(&offsets(draft, left, (left + 1).saturating_sub(fit)..left))?;
+        let rate_right = rate_of(&offsets(draft, right, right + 1..(right + fit).min(draft.len())))?;
+        Some(way.with_rates(rate_left, rate_right))
     }
 
     /// At a share of the way, 0 to 1.
@@ -170,24 +200,62 @@ impl Hermite {
     }
 }
 
-/// The body rate at a key from the keys `others` on one side of it, in radians per second: least squares of a parabola
+/// The way across a gap.
+#[derive(Clone, Copy)]
+struct Way {
+    from: Rotor,
+    /// The turn across, and its plane angles.
+    across: Rotor,
+    to: Bivector,
+    secs: f64,
+}
+
+impl Way {
+    /// `None` where an end is no rotation or the way has no sure side.
+    fn new(draft: &Draft, left: usize, right: usize) -> Option<Self> {
+        let (a, b) = (draft.unit(left)?, draft.unit(right)?);
+        let secs = draft.secs(right) - draft.secs(left);
+        let across = a.reverse() * b;
+        let to = across.plane_angles();
+        (to.length() <= WIDE_RAD && secs > 0.0).then_some(Self { from: a, across, to, secs })
+    }
+
+    /// The curve with these body rates at its ends, in radians per second.
+    fn with_rates(self, left: Bivector, right: Bivector) -> Hermite {
+        // The slope of the plane angles at the right end, by a small step along its rate.
+        let small = 1e-4 / right.length().max(1e-9);
+        let near =
+            |sign: f64| (self.across * Rotor::from_plane_angles(right * (sign * small))).plane_angles();
+        let slope_right = (near(1.0) - near(-1.0)) * (0.5 / small);
+        Hermite { from: self.from, to: self.to, slopes: [left * self.secs, slope_right * self.secs] }
+    }
+}
+
+/// Keys on one side of `key` in their order, each with its turn from there as plane angles and its time from there in seconds.
+fn offsets(draft: &Draft, key: usize, others: std::ops::Range<usize>) -> Vec<(usize, Bivector, f64)> {
+    let Some(here) = draft.unit(key) else { return Vec::new() };
+    let here = here.reverse();
+    others
+        .filter_map(|other| {
+            let pose = draft.unit(other)?;
+            Some((other, (here * pose).plane_angles(), draft.secs(other) - draft.secs(key)))
+        })
+        .collect()
+}
+
+/// The body rate at a key from [`offsets`] on one side of it, in radians per second: least squares of a parabola
 /// through the key (of a line, with two keys or fewer).
-fn fitted_rate(draft: &Draft, key: usize, others: std::ops::Range<usize>) -> Option<Bivector> {
-    let here = draft.unit(key)?.reverse();
+fn rate_of(offsets: &[(usize, Bivector, f64)]) -> Option<Bivector> {
     let (mut t2, mut t3, mut t4) = (0.0, 0.0, 0.0);
     let (mut ty, mut tty) = (Bivector::ZERO, Bivector::ZERO);
-    let mut count = 0;
-    for other in others {
-        let Some(pose) = draft.unit(other) else { continue };
-        let y = (here * pose).plane_angles();
-        let t = draft.secs(other) - draft.secs(key);
+    for &(_, y, t) in offsets {
         t2 += t * t;
         t3 += t * t * t;
         t4 += t * t * t * t;
         ty = ty + y * t;
         tty = tty + y * (t * t);
-        count += 1;
     }
+    let count = offsets.len();
     if count == 0 || t2 <= 0.0 {
         return None;
     }

@@ -9,8 +9,8 @@ use rayon::prelude::*;
 use crate::clip::{Clip, JointTracks, RotationTrack};
 use crate::limit::Limits;
 use crate::snag::{
-    Cancelled, Memory, Outline, Outlines, Progress, Remedy, Snag, SnagKind, View, find, find_half_turns,
-    find_in_clip, find_past_limit, find_with, preset_limits,
+    Cancelled, Flips, Memory, Outline, Outlines, Progress, Remedy, Snag, SnagKind, View, find,
+    find_half_turns, find_in_clip, find_past_limit, find_with, preset_limits,
 };
 
 use super::apply::{apply_all, asks_others, change_at_snag_rad, change_of_keys_rad, mend_row};
@@ -113,6 +113,7 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
             continue;
         }
         let view = View { clip: &working, outlines: &outlines };
+        let flips = Flips::new(clip.joints.len());
         let told: Vec<Vec<Snag>> = (0..clip.joints.len())
             .into_par_iter()
             .map(|joint| {
@@ -121,7 +122,7 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
                 }
                 let snags = match (kind, options.limits.as_deref()) {
                     (SnagKind::PastLimit, Some(limits)) => find_past_limit(&working, joint, limits),
-                    (SnagKind::HalfTurn, _) => find_half_turns(view, joint, &side_limits),
+                    (SnagKind::HalfTurn, _) => find_half_turns(view, joint, &side_limits, &flips),
                     _ => find_with(view, joint, kind, &mut Memory::default()),
                 };
                 if !progress.report(done.fetch_add(1, Ordering::Relaxed) + 1, total) {

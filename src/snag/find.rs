@@ -6,8 +6,8 @@ use crate::clip::Clip;
 use crate::limit::{Limits, adult};
 
 use super::{
-    Memory, Outlines, Snag, SnagKind, View, broken_value, half_turn, jitter, long_way, mirrored_angles, seam,
-    sign_flip, slide, spike, stuck, wrap,
+    Flips, Memory, Outlines, Snag, SnagKind, View, broken_value, half_turn, jitter, long_way,
+    mirrored_angles, seam, sign_flip, slide, spike, stuck, wrap,
 };
 
 /// Finds the snags of one kind in one joint of `clip` as it is, in the order of their keys.
@@ -30,7 +30,8 @@ pub fn find_with(view: View<'_>, joint: usize, kind: SnagKind, memory: &mut Memo
         SnagKind::LongWay => long_way::find(view, joint, memory),
         SnagKind::HalfTurn => {
             let adult = OnceCell::new();
-            half_turn::find_half_turns(view, joint, &|| adult.get_or_init(|| preset_limits(clip)).as_ref())
+            let limits = || adult.get_or_init(|| preset_limits(clip)).as_ref();
+            half_turn::find_half_turns(view, joint, &limits, &Flips::new(clip.joints.len()))
         }
         SnagKind::Spike => spike::find(view, joint),
         SnagKind::Stuck => stuck::find(view, joint),

@@ -1,5 +1,6 @@
 //! Runs of keys in which a joint sits about half a turn off its neighbours.
 
+mod flips;
 mod sides;
 
 use std::cell::RefCell;
@@ -17,6 +18,7 @@ use super::poses::Poses;
 use super::roughness::angle_of_dot;
 use super::scan::{Finding, Scan, View};
 use super::{Remedy, Snag, SnagKind};
+pub use flips::Flips;
 use sides::{Evidence, Sides};
 
 /// With fewer keys nothing can be said about what is usual.
@@ -75,37 +77,67 @@ const CONTRARY_EVIDENCE: f64 = -0.15;
 
 /// Finds half-turns of one joint of `clip`. Of the two sides of a jump the wrong one is told by the whole clip: by the motion at
 /// both ends of a run, how long it is, what the joints above do, by `limits` where the joint has one there, by the joint on the other
-/// side of the body, and by where the limb and its child point. `limits` is asked for only where the joint jumps.
+/// side of the body, and by where the limb and its child point. `limits` is asked for only where the joint jumps. `flips` is what the
+/// joints of this very clip have found out, with these limits.
 pub fn find_half_turns<'a>(
     view: View<'_>,
     joint: usize,
     limits: &dyn Fn() -> Option<&'a Limits>,
+    flips: &Flips,
 ) -> Vec<Snag> {
-    let mut snags = find(view, joint, limits);
+    let mut snags = find(view, joint, limits, flips);
     snags.sort_by_key(|snag| (snag.first_key, snag.last_key));
     snags
 }
 
-fn find<'a>(view: View<'_>, joint: usize, limits: &dyn Fn() -> Option<&'a Limits>) -> Vec<Snag> {
+fn find<'a>(
+    view: View<'_>,
+    joint: usize,
+    limits: &dyn Fn() -> Option<&'a Limits>,
+    flips: &Flips,
+) -> Vec<Snag> {
     let Some(scan) = Scan::new(view, joint).filter(|scan| scan.keys.len() >= LEAST_KEYS) else {
         return Vec::new();
     };
-    let jumps = jumps(&scan);
+    let jumps = flips.jumps(&scan);
     if jumps.is_empty() {
         return Vec::new();
     }
     let limits = limits();
-    let above = runs_above(&scan, &jumps, limits);
-    let sides = Sides::new(scan, &jumps, limits, !above.is_empty());
-    let motion = Motion::new(scan, jumps, above, sides);
-    let runs = motion.runs();
+    let above = runs_above(&scan, jumps, limits, flips);
+    let (motion, runs) = if above.is_empty() {
+        let Alone { runs, known } = alone(&scan, limits, flips);
+        let sides = Sides::new(scan, flips, limits, false);
+        (Motion::new(scan, jumps, above, sides, known.clone()), runs.clone())
+    } else {
+        let sides = Sides::new(scan, flips, limits, true);
+        let motion = Motion::new(scan, jumps, above, sides, BTreeMap::new());
+        let runs = motion.runs();
+        (motion, runs)
+    };
     let lone = motion.lone_jumps(&runs);
     runs.into_iter().filter_map(|run| motion.snag(run)).chain(lone).collect()
 }
 
+/// The runs of a joint by itself, and what was worked out about them.
+#[derive(Debug)]
+struct Alone {
+    runs: Vec<Run>,
+    known: BTreeMap<Run, Known>,
+}
+
+fn alone<'f>(scan: &Scan<'_>, limits: Option<&Limits>, flips: &'f Flips) -> &'f Alone {
+    flips.alone(scan, || {
+        let sides = Sides::new(*scan, flips, limits, false);
+        let motion = Motion::new(*scan, flips.jumps(scan), Vec::new(), sides, BTreeMap::new());
+        let runs = motion.runs();
+        Alone { runs, known: motion.known.into_inner() }
+    })
+}
+
 /// The runs of the nearest joint above that jumps at the same times as this one, as keys of this joint; a joint that turns
 /// along with another is off when that one is.
-fn runs_above(scan: &Scan<'_>, own: &[usize], limits: Option<&Limits>) -> Vec<Run> {
+fn runs_above(scan: &Scan<'_>, own: &[usize], limits: Option<&Limits>, flips: &Flips) -> Vec<Run> {
     let skeleton = &scan.clip.skeleton;
     let above =
         std::iter::successors(skeleton.parent_joint(scan.joint), |&up| skeleton.parent_joint(up)).take(2);
@@ -113,11 +145,10 @@ fn runs_above(scan: &Scan<'_>, own: &[usize], limits: Option<&Limits>) -> Vec<Ru
         if other.track.times != scan.track.times {
             continue;
         }
-        let jumps = jumps(&other);
+        let jumps = flips.jumps(&other);
         let shared = own.iter().filter(|jump| jumps.binary_search(jump).is_ok()).count();
         if shared * 2 > own.len() {
-            let sides = Sides::new(other, &jumps, limits, false);
-            return Motion::new(other, jumps, Vec::new(), sides).runs();
+            return alone(&other, limits, flips).runs.clone();
         }
     }
     Vec::new()
@@ -201,7 +232,7 @@ fn is_cut(scan: &Scan<'_>, key: usize) -> bool {
 struct Motion<'a> {
     scan: Scan<'a>,
     poses: Poses<'a>,
-    jumps: Vec<usize>,
+    jumps: &'a [usize],
     /// Runs of a joint above that jumps along, in order.
     above: Vec<Run>,
     sides: Sides<'a>,
@@ -210,7 +241,7 @@ struct Motion<'a> {
 }
 
 /// What is known about a run.
-#[derive(Clone, Copy)]
+#[derive(Clone, Copy, Debug)]
 struct Known {
     /// The offset at both ends, on the bone side and on the parent's.
     ends: [[Option<Offset>; 2]; 2],
@@ -227,6 +258,25 @@ struct RunOffset {
     is_inside: bool,
 }
 
+/// How the jumps from one on are best paired.
+#[derive(Clone, Copy)]
+struct Way {
+    /// What that costs at least and at most.
+    cost: [f64; 2],
+    /// How many jumps it takes first.
+    takes: usize,
+    /// Whether the other way is dearer whatever the costs are.
+    is_sure: bool,
+}
+
+/// Whether of two ranges of costs the one lies below the other; two that are known each have an order, ties too.
+fn is_apart(a: [f64; 2], b: [f64; 2]) -> bool {
+    /// What sums in another order may differ by, many times over.
+    const ROUNDING: f64 = 1e-9;
+    let (a_known, b_known) = (a[0].total_cmp(&a[1]).is_eq(), b[0].total_cmp(&b[1]).is_eq());
+    (a_known && b_known) || a[1] + ROUNDING < b[0] || b[1] + ROUNDING < a[0]
+}
+
 /// A run of keys that are off: `first..=last`.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
 struct Run {
@@ -235,8 +285,14 @@ struct Run {
 }
 
 impl<'a> Motion<'a> {
-    fn new(scan: Scan<'a>, jumps: Vec<usize>, above: Vec<Run>, sides: Sides<'a>) -> Self {
-        Self { scan, poses: Poses::new(scan), jumps, above, sides, known: RefCell::default() }
+    fn new(
+        scan: Scan<'a>,
+        jumps: &'a [usize],
+        above: Vec<Run>,
+        sides: Sides<'a>,
+        known: BTreeMap<Run, Known>,
+    ) -> Self {
+        Self { scan, poses: Poses::new(scan), jumps, above, sides, known: RefCell::new(known) }
     }
 
     /// Whether a joint above is off over the very same keys.
@@ -251,55 +307,72 @@ impl<'a> Motion<'a> {
     /// Which keys are off: each jump is a way in or out. Of the ways to pair them the one is taken whose ways in and out
     /// agree and that leaves the fewest keys off.
     fn runs(&self) -> Vec<Run> {
-        let (jumps, count) = (&self.jumps, self.poses.len());
+        // Witnesses are asked only where they could decide.
+        self.paired(&|run| [MOST_EVIDENCE, -MOST_EVIDENCE].map(|speaks| self.cost(run, &|| speaks)))
+            .or_else(|| {
+                self.paired(&|run| {
+                    [self.cost(run, &|| self.evidence(run).sum().clamp(-MOST_EVIDENCE, MOST_EVIDENCE)); 2]
+                })
+            })
+            .unwrap_or_default()
+    }
+
+    /// The cheapest pairing for costs of which the least and the most is known; `None` where that does not decide.
+    fn paired(&self, cost: &dyn Fn(Run) -> [f64; 2]) -> Option<Vec<Run>> {
+        let (jumps, count) = (self.jumps, self.poses.len());
         let key = |jump: usize| if jump < jumps.len() { jumps[jump] } else { count };
+        let run_from = |jump: usize| Run { first: key(jump), last: key(jump + 1) - 1 };
+        let sum = |a: [f64; 2], b: [f64; 2]| [a[0] + b[0], a[1] + b[1]];
         // `best[i]`: cheapest pairing of the jumps from `i` on, and how many jumps it takes first.
-        let mut best: Vec<(f64, usize)> = vec![(0.0, 0); jumps.len() + 1];
+        let mut best: Vec<Way> = vec![Way { cost: [0.0; 2], takes: 0, is_sure: true }; jumps.len() + 1];
         for jump in (0..jumps.len()).rev() {
             // Left alone: a jump that is no half-turn.
-            let mut own = (best[jump + 1].0 + 1.2, 1);
-            if jump + 1 < jumps.len() {
-                let run = Run { first: key(jump), last: key(jump + 1) - 1 };
-                let cost = best[jump + 2].0 + self.cost(run);
-                if cost < own.0 {
-                    own = (cost, 2);
-                }
-            } else {
-                let run = Run { first: key(jump), last: count - 1 };
-                let cost = self.cost(run);
-                if cost < own.0 {
-                    own = (cost, 2);
-                }
-            }
-            best[jump] = own;
+            let alone = sum(best[jump + 1].cost, [1.2; 2]);
+            // The last jump may be entered and never left.
+            let then = best.get(jump + 2).map_or([0.0; 2], |way| way.cost);
+            let run = sum(then, cost(run_from(jump)));
+            best[jump] = Way {
+                cost: [alone[0].min(run[0]), alone[1].min(run[1])],
+                takes: if run[0] < alone[0] { 2 } else { 1 },
+                is_sure: is_apart(run, alone),
+            };
         }
         let walk = |mut jump: usize, runs: &mut Vec<Run>| {
             while jump < jumps.len() {
-                if best[jump].1 == 2 {
-                    runs.push(Run { first: key(jump), last: key(jump + 1) - 1 });
+                if !best[jump].is_sure {
+                    return None;
                 }
-                jump += best[jump].1;
+                if best[jump].takes == 2 {
+                    runs.push(run_from(jump));
+                }
+                jump += best[jump].takes;
             }
+            Some(())
         };
         let mut runs = Vec::new();
         let from_start = Run { first: 0, last: key(0) - 1 };
-        // The first pose is believed where both ways are nearly as good.
-        if key(0) > CALIBRATION_KEYS && self.cost(from_start) + FIRST_POSE_COST + best[1].0 < best[0].0 {
-            runs.push(from_start);
-            walk(1, &mut runs);
-        } else {
-            walk(0, &mut runs);
+        if key(0) > CALIBRATION_KEYS {
+            // The first pose is believed where both ways are nearly as good.
+            let given_up = sum(sum(cost(from_start), [FIRST_POSE_COST; 2]), best[1].cost);
+            if !is_apart(given_up, best[0].cost) {
+                return None;
+            }
+            if given_up[0] < best[0].cost[0] {
+                runs.push(from_start);
+                walk(1, &mut runs)?;
+                return Some(runs);
+            }
         }
-        runs
+        walk(0, &mut runs)?;
+        Some(runs)
     }
 
     /// Near 0 for a short run that is entered and left by the same offset; above 1 for what is better left alone. What speaks for its
     /// being off makes it less.
-    fn cost(&self, run: Run) -> f64 {
+    fn cost(&self, run: Run, speaks: &dyn Fn() -> f64) -> f64 {
         let share = || {
             let share = (run.last + 1 - run.first) as f64 / self.poses.len() as f64;
-            let speaks = self.evidence(run).sum().clamp(-MOST_EVIDENCE, MOST_EVIDENCE);
-            share * (1.0 - WITNESS_COST * speaks)
+            share * (1.0 - WITNESS_COST * speaks())
         };
         let [bone, parent] = self.known(run).ends;
         match bone {

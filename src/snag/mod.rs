@@ -29,7 +29,7 @@ mod wrap;
 
 pub use find::{find, find_in_clip, find_with, preset_limits};
 pub use finding::{LoopClose, LoopForm, Plant, Remedy, Snag};
-pub use half_turn::find_half_turns;
+pub use half_turn::{Flips, find_half_turns};
 pub use kind::{NoSuchKind, SnagKind};
 pub use memory::Memory;
 pub use outline::{Outline, Outlines};

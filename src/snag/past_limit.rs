@@ -1,9 +1,7 @@
 //! Runs of frames in which a joint is beyond its limit.
 
 use crate::clip::{Clip, PathKind, Paths};
-use crate::limit::JointLimit;
-use crate::limit::Limits;
-use crate::limit::Reading;
+use crate::limit::{Inside, JointLimit, Limits, PROVED_TOGETHER, Reading};
 use crate::rotor::Rotor;
 
 use super::scan::{Finding, Scan, View};
@@ -38,42 +36,60 @@ pub fn find_past_limit(clip: &Clip, joint: usize, limits: &Limits) -> Vec<Snag> 
     let times = &clip.grid.times;
     let passes_keys = matches!(scan.track.paths, Paths::Every(kind) if kind != PathKind::BSpline);
     let is_key_by_key = passes_keys && scan.track.times == *times;
+    let proof = Inside::fault_of(limit);
+    // The last pose that was passed over: its reading does not depend on what came before.
+    let mut passed: Option<Rotor> = None;
     for start in (0..times.len()).step_by(TILE) {
         let frames = start..(start + TILE).min(times.len());
-        let poses: Vec<Rotor> = if is_key_by_key {
-            frames.map(|frame| scan.unit(frame).unwrap_or_else(|| scan.track.sound_key(frame))).collect()
+        let made: Vec<Rotor>;
+        let poses: &[Rotor] = if is_key_by_key {
+            &scan.keys[frames]
         } else {
-            scan.track.at_all(&frames.map(|frame| times.at(frame)).collect::<Vec<_>>())
+            made = scan.track.at_all(&frames.map(|frame| times.at(frame)).collect::<Vec<_>>());
+            &made
         };
-        for (frame, pose) in (start..).zip(poses) {
-            let reading = limit.read(pose, before.as_ref());
-            before = Some(reading);
-            is_held |= reading.is_twist_held;
-            let size_rad = limit.fault.beyond_rad(&reading);
-            if size_rad <= ROUNDING_RAD {
+        let pose_at = |frame: usize, pose: Rotor| {
+            if is_key_by_key { scan.track.sound_key(frame) } else { pose }
+        };
+        for (first, poses) in (start..).step_by(PROVED_TOGETHER).zip(poses.chunks(PROVED_TOGETHER)) {
+            if proof.is_some_and(|proof| proof.holds(poses)) {
+                let last = poses.len() - 1;
+                passed = Some(pose_at(first + last, poses[last]));
                 continue;
             }
-            match runs.last_mut() {
-                Some(run) if frame <= run.last + near => {
-                    run.last = frame;
-                    run.is_held |= is_held;
-                    if size_rad >= run.size_rad {
-                        (run.worst, run.size_rad) = (reading, size_rad);
+            if let Some(passed) = passed.take() {
+                before = Some(limit.read(passed, None));
+            }
+            for (frame, pose) in (first..).zip(poses) {
+                let reading = limit.read(pose_at(frame, *pose), before.as_ref());
+                before = Some(reading);
+                is_held |= reading.is_twist_held;
+                let size_rad = limit.fault.beyond_rad(&reading);
+                if size_rad <= ROUNDING_RAD {
+                    continue;
+                }
+                match runs.last_mut() {
+                    Some(run) if frame <= run.last + near => {
+                        run.last = frame;
+                        run.is_held |= is_held;
+                        if size_rad >= run.size_rad {
+                            (run.worst, run.size_rad) = (reading, size_rad);
+                        }
+                    }
+                    _ => {
+                        let is_held = reading.is_twist_held;
+                        runs.push(Run { first: frame, last: frame, worst: reading, size_rad, is_held });
                     }
                 }
-                _ => {
-                    let is_held = reading.is_twist_held;
-                    runs.push(Run { first: frame, last: frame, worst: reading, size_rad, is_held });
-                }
+                is_held = false;
             }
-            is_held = false;
         }
     }
     runs.into_iter().map(|run| snag(&scan, limit, &limits.title, run)).collect()
 }
 
-/// Frames that are read together.
-const TILE: usize = 1024;
+/// Frames whose poses are made together.
+const TILE: usize = 16 * PROVED_TOGETHER;
 
 /// A run of frames beyond the limit.
 #[derive(Clone, Copy, Debug)]

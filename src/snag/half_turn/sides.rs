@@ -9,10 +9,10 @@ use glam::DVec3;
 use crate::clip::Clip;
 use crate::limit::{JointLimit, Limits};
 use crate::rotor::{Rotor, chordal_mean};
-use crate::skeleton::{JointKind, Mirror, Skeleton};
+use crate::skeleton::{JointKind, Skeleton};
 
 use super::super::scan::Scan;
-use super::jumps;
+use super::Flips;
 
 /// Keys of a run that are looked at, and those of the joint on the other side.
 const SAMPLED: usize = 48;
@@ -98,13 +98,13 @@ pub(super) struct Sides<'a> {
 
 impl<'a> Sides<'a> {
     /// Where a joint above jumps along, directions from the body tell of that one and are not asked.
-    pub(super) fn new(scan: Scan<'a>, own_jumps: &[usize], limits: Option<&Limits>, is_led: bool) -> Self {
+    pub(super) fn new(scan: Scan<'a>, flips: &Flips, limits: Option<&Limits>, is_led: bool) -> Self {
         let limit = limits.and_then(|limits| limits.get(scan.joint)).copied();
         Self {
             scan,
             limit: limit.filter(|limit| limit.confidence >= LEAST_CONFIDENCE),
-            other_side: other_side(&scan),
-            directions: if is_led { None } else { Directions::new(&scan, own_jumps) },
+            other_side: other_side(&scan, flips),
+            directions: if is_led { None } else { Directions::new(&scan, flips) },
         }
     }
 
@@ -135,23 +135,28 @@ impl<'a> Sides<'a> {
                 })
             }),
             other_side: self.other_side.map(|other| mean(&|_, pose| pose.turn_to(other))),
-            directions: self
-                .directions
-                .as_ref()
-                .map(|own| mean(&|key, pose| own.off(self.scan.clip, self.scan.secs(key), pose))),
+            directions: self.directions.as_ref().map(|own| {
+                let mut sums = [0.0; 2];
+                for (key, both) in &poses {
+                    let off = own.off(self.scan.clip, self.scan.secs(*key), *both);
+                    sums = [sums[0] + off[0], sums[1] + off[1]];
+                }
+                let [as_is, mended] = sums.map(|sum| sum / poses.len() as f64);
+                Off { as_is, mended }
+            }),
         }
     }
 }
 
 /// The middle pose of the joint on the other side, as this one's; `None` where there is no such joint, or one that jumps too.
-fn other_side(scan: &Scan<'_>) -> Option<Rotor> {
-    let mirror = Mirror::of(&scan.clip.skeleton)?;
+fn other_side(scan: &Scan<'_>, flips: &Flips) -> Option<Rotor> {
+    let mirror = flips.mirror(&scan.clip.skeleton)?;
     let other = mirror.partner(scan.joint);
     if other == scan.joint || mirror.partner(other) != scan.joint {
         return None;
     }
     let partner = scan.other(other)?;
-    if !jumps(&partner).is_empty() {
+    if !flips.jumps(&partner).is_empty() {
         return None;
     }
     let stride = (partner.keys.len() / (4 * SAMPLED)).max(1);
@@ -174,7 +179,7 @@ struct Directions {
 }
 
 impl Directions {
-    fn new(scan: &Scan<'_>, own_jumps: &[usize]) -> Option<Self> {
+    fn new(scan: &Scan<'_>, flips: &Flips) -> Option<Self> {
         let skeleton = &*scan.clip.skeleton;
         let body = body_of(skeleton, scan.joint)?;
         let mut above: Vec<usize> = std::iter::successors(skeleton.joints()[scan.joint].parent, |&joint| {
@@ -189,8 +194,8 @@ impl Directions {
         let (next, limb) = limb_of(skeleton, scan.joint)?;
         let turns_along = |child: usize| {
             scan.other(child).is_some_and(|child| {
-                let jumps = jumps(&child);
-                own_jumps.iter().any(|jump| jumps.binary_search(jump).is_ok())
+                let jumps = flips.jumps(&child);
+                flips.jumps(scan).iter().any(|jump| jumps.binary_search(jump).is_ok())
             })
         };
         let child = next
@@ -199,16 +204,16 @@ impl Directions {
         Some(Self { above, limb: with_rest(scan.joint, limb), child })
     }
 
-    /// How far the directions are from those at rest, in radians in the mean, with the joint in this pose.
-    fn off(&self, clip: &Clip, secs: f64, pose: Rotor) -> f64 {
+    /// How far the directions are from those at rest, in radians in the mean, with the joint in each of two poses.
+    fn off(&self, clip: &Clip, secs: f64, poses: [Rotor; 2]) -> [f64; 2] {
         let above = self.above.iter().fold(Rotor::IDENTITY, |turn, &joint| turn * local(clip, joint, secs));
-        let turn = above * pose;
         let off = |turn: Rotor, [limb, rest]: [DVec3; 2]| turn.apply(limb).angle_between(rest);
-        let own = off(turn, self.limb);
-        match self.child {
-            Some((child, limb)) => 0.5 * (own + off(turn * local(clip, child, secs), limb)),
-            None => own,
-        }
+        let child = self.child.map(|(child, limb)| (local(clip, child, secs), limb));
+        poses.map(|pose| {
+            let turn = above * pose;
+            let own = off(turn, self.limb);
+            child.map_or(own, |(child, limb)| 0.5 * (own + off(turn * child, limb)))
+        })
     }
 }
 
