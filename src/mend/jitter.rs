@@ -128,7 +128,9 @@ fn smoothed(
         if new.is_empty() {
             break;
         }
-        new.into_iter().for_each(|i| task.weights[i] = 0.0);
+        for i in new {
+            task.weights[i] = 0.0;
+        }
         fitted = task.fitted(noise.sigma_rad)?;
     }
     let smoothed = task.trembles.clone().map(|i| {

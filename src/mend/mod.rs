@@ -8,6 +8,7 @@ mod error;
 mod jitter;
 mod loop_close;
 mod numbers;
+mod other_side;
 mod others;
 mod plant;
 mod redraw;

@@ -5,12 +5,13 @@
 //! gaps out: the cubic with fitted end rates; a linear one from how the other joints lie off their own straight way (ridge
 //! regression on their principal directions); and one from the most alike stretches of the whole body's motion (kernel
 //! regression). They are taken with the weights that do best on the gaps left out, and only when they beat what
-//! `redraw` would do alone.
+//! `redraw` would do alone. Where that teaches nothing, as in a loop of a second, the joint on the other side may ([`other_side`]).
 
 use crate::clip::Clip;
 use crate::rotor::{Bivector, Rotor, slerp};
 
 use super::draft::Draft;
+use super::other_side;
 use super::others::Others;
 use super::redraw::{self, Hermite};
 use super::regress::{Table, blend_weights, dot, ridge, solve, times};
@@ -48,7 +49,9 @@ const WIDE_RAD: f64 = 2.6;
 
 /// Draws `first..=last` of `joint` anew. `clip` gives what the other joints do.
 pub(super) fn redraw_from_others(draft: &mut Draft, clip: &Clip, joint: usize, first: usize, last: usize) {
-    match bulges(draft, clip, joint, first, last) {
+    let learned = bulges(draft, clip, joint, first, last)
+        .or_else(|| other_side::poses(draft, clip, joint, first, last));
+    match learned {
         Some(poses) => redraw::write(draft, first, &poses),
         None => redraw::redraw(draft, first, last),
     }
