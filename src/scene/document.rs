@@ -169,7 +169,7 @@ impl Document {
     pub fn skeletons_behind(&self, work: usize) -> BTreeSet<usize> {
         let works = self.leans_on(work).into_iter().chain([work]).filter_map(|work| self.works.get(work));
         let passes = works.flat_map(|work| &work.passes);
-        passes.filter_map(|pass| needed_skeleton(pass)).collect()
+        passes.filter_map(needed_skeleton).collect()
     }
 
     /// Gives the joints of a source other numbers wherever passes, limits and snags name them. `now` gives a joint's new number;

@@ -1,5 +1,6 @@
 //! How long does one frame of the window take? `cargo bench --bench ui_frame` (`FRAMES=36000` in front: that length alone): a window without a display, 60 joints, 36,000 and 432,000 frames
-//! (5 minutes and an hour at 120 a second), while scrubbing, playing and dragging a key, at two sizes.
+//! (5 minutes and an hour at 120 a second), while scrubbing, playing and dragging a key, at two sizes; and, over the first length, while
+//! scrubbing and dragging a contact in the retarget sheet, with a figure of 60 joints that is smaller.
 //!
 //! Time of the processor: the interface and the tessellation on their thread, and half of the painting, which two threads
 //! share in bands of rows. The split is printed. With `--test` a short clip is shown for a few frames.
@@ -17,14 +18,16 @@ use cpu_time::ThreadTime;
 use criterion::Criterion;
 use glam::DVec3;
 use processor::CpuTime;
-use turnwright::app::commands::{Action, Command};
+use turnwright::app::commands::{Action, CarryCommand, Command};
 use turnwright::app::paint::Headless;
 use turnwright::app::{Start, Window};
-use turnwright::clip::{Clip, FrameGrid, JointTracks, KeyChange, KeyEdit, RotationTrack, Times};
+use turnwright::clip::{Clip, FootPart, FrameGrid, JointTracks, KeyChange, KeyEdit, RotationTrack, Times};
 use turnwright::exchange::{OpenOptions, Source, bvh, open_bytes};
 use turnwright::limit::{LearnOptions, learned};
+use turnwright::retarget::FootContact;
 use turnwright::rotor::{Bivector, Rotor};
-use turnwright::scene::{Edit, KeysPass, PassId, PassStep};
+use turnwright::scene::{Edit, KeysPass, PassId, PassStep, RetargetPass};
+use turnwright::skeleton::roles::Side;
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 const RATE: f64 = 120.0;
@@ -33,7 +36,7 @@ const JOINTS: usize = 60;
 const CHOSEN: usize = 2;
 
 /// A trunk, two arms with hands, two legs: 60 joints.
-fn skeleton() -> Skeleton {
+fn skeleton(size: f64) -> Skeleton {
     // Parent, and the way from it.
     let mut joints: Vec<(Option<usize>, DVec3)> = vec![(None, DVec3::new(0.0, 0.95, 0.0))];
     let chain = |joints: &mut Vec<(Option<usize>, DVec3)>, from: usize, steps: &[DVec3]| {
@@ -63,7 +66,7 @@ fn skeleton() -> Skeleton {
         name: format!("Joint_of_the_figure_{number:02}"),
         number,
         parent,
-        rest: Transform::from_translation(place),
+        rest: Transform::from_translation(size * place),
         kind: JointKind::Joint,
         tips: vec![],
     };
@@ -71,7 +74,7 @@ fn skeleton() -> Skeleton {
 }
 
 /// Every joint swings to and fro; every twelfth of a second of the clip's joints is off for a frame somewhere.
-fn clip(frames: usize) -> Clip {
+fn clip(frames: usize, size: f64) -> Clip {
     let times = Times::Even { step_secs: 1.0 / RATE, count: frames };
     let tracks = (0..JOINTS).map(|joint| {
         let keys: Vec<Rotor> = (0..frames)
@@ -91,18 +94,18 @@ fn clip(frames: usize) -> Clip {
     Clip {
         name: "long".to_owned(),
         joints: tracks.collect(),
-        skeleton: Arc::new(skeleton()),
+        skeleton: Arc::new(skeleton(size)),
         duration_secs: (frames - 1) as f64 / RATE,
         grid: FrameGrid { times, rate: RATE },
     }
 }
 
 /// A file with that clip, as if it had been read.
-fn source(frames: usize) -> Arc<Source> {
-    let short = bvh::from_clip(&clip(2)).0;
+fn source(name: &str, frames: usize, size: f64) -> Arc<Source> {
+    let short = bvh::from_clip(&clip(2, size)).0;
     let mut source =
-        open_bytes(Path::new("long.bvh"), short, &OpenOptions::default()).expect("what was written reads");
-    source.clips = vec![Arc::new(clip(frames))];
+        open_bytes(Path::new(name), short, &OpenOptions::default()).expect("what was written reads");
+    source.clips = vec![Arc::new(clip(frames, size))];
     Arc::new(source)
 }
 
@@ -112,6 +115,8 @@ enum Doing {
     Scrubbing,
     Playing,
     DraggingKey,
+    ScrubbingRetarget,
+    DraggingContact,
 }
 
 struct Desk {
@@ -139,32 +144,32 @@ impl Cost {
 }
 
 impl Desk {
-    fn new(source: Arc<Source>, size: [f32; 2]) -> Self {
+    fn new(sources: Vec<Arc<Source>>, size: [f32; 2]) -> Self {
         let size = egui::vec2(size[0], size[1]);
         let mut headless = Headless::new(size, 1.0, 1);
         let mut window = Window::new(headless.context(), Start::Empty);
-        let clip = Arc::clone(&source.clips[0]);
-        window.show_sources(vec![source]);
+        let clip = Arc::clone(&sources[0].clips[0]);
+        window.show_sources(sources);
+        window.ask(Command::CloseDialog);
         window.ask(Command::ChooseJoint(Some(CHOSEN)));
         // Their rooms are shaded behind the curves.
-        let limits = learned(&self::clip(60 * RATE as usize), &LearnOptions::default());
+        let limits = learned(&self::clip(60 * RATE as usize, 1.0), &LearnOptions::default());
         assert!(!limits.joints.is_empty(), "there are limits to shade");
         assert!(limits.joints.contains_key(&CHOSEN), "its own among them");
         window.ask(Command::Edit(Edit::SetLimits { work: 0, limits: Some(Arc::new(limits)) }));
         let edits = vec![key_edit(&clip, 0.0)];
         window.ask(Command::Edit(Edit::AddPass { work: 0, step: KeysPass { edits }.into(), at: 0 }));
-        let start = Instant::now();
-        loop {
-            headless.frame(&mut window, Vec::new());
-            if !window.is_busy() && window.bench().curves.is_some() && !headless.wants_more() {
-                break;
-            }
-            assert!(start.elapsed() < Duration::from_mins(20), "the window never comes to rest");
-            std::thread::sleep(Duration::from_millis(5));
-        }
+        rest(&mut headless, &mut window);
         let pass = window.bench().work().expect("a clip").passes[0].id;
         let duration_secs = clip.duration_secs;
         Self { headless, window, pixels: Vec::new(), frame: 0, duration_secs, pass }
+    }
+
+    /// Carries the clip to the other figure, in the sheet for that.
+    fn carry(&mut self) {
+        self.window.ask(Command::Carry(CarryCommand::Onto(1)));
+        rest(&mut self.headless, &mut self.window);
+        assert!(self.window.bench().carry_made().is_some(), "it is carried whole");
     }
 
     /// Asks for what the person does in this frame.
@@ -182,6 +187,18 @@ impl Desk {
                 let edits = vec![key_edit(&clip, 0.3 * (step * 0.05).sin())];
                 let step: PassStep = KeysPass { edits }.into();
                 self.window.ask(Command::PreviewPass(self.pass, Box::new(step)));
+            }
+            Doing::ScrubbingRetarget => {
+                let share = 0.5 + 0.45 * (step * 0.013).sin();
+                self.window.ask(Command::Scrub(share * self.duration_secs));
+            }
+            Doing::DraggingContact => {
+                let (id, pass) = self.window.bench().carried_pass().expect("a retarget");
+                let middle = 0.5 * self.duration_secs;
+                let span_secs = [middle, middle + 0.5 + 0.3 * (step * 0.05).sin()];
+                let contact = FootContact { side: Side::Left, part: FootPart::Heel, span_secs };
+                let pass = RetargetPass { feet: Some(vec![contact]), ..pass };
+                self.window.ask(Command::Carry(CarryCommand::Preview(id, Box::new(pass))));
             }
         }
         // The pointer moves as well: hovering is part of each frame.
@@ -216,6 +233,19 @@ impl Desk {
     }
 }
 
+/// Goes on until nothing is on its way.
+fn rest(headless: &mut Headless, window: &mut Window) {
+    let start = Instant::now();
+    loop {
+        headless.frame(window, Vec::new());
+        if !window.is_busy() && window.bench().curves.is_some() && !headless.wants_more() {
+            break;
+        }
+        assert!(start.elapsed() < Duration::from_mins(20), "the window never comes to rest");
+        std::thread::sleep(Duration::from_millis(5));
+    }
+}
+
 /// The key in the middle of the chosen joint, turned a little more.
 fn key_edit(clip: &Clip, by: f64) -> KeyEdit {
     let secs = clip.grid.time(clip.grid.count() / 2);
@@ -235,11 +265,18 @@ fn main() {
         Criterion::default().with_measurement(CpuTime).configure_from_args();
     let mut known: Vec<(String, f64)> = Vec::new();
     for &frames in &lengths {
-        let source = source(frames);
+        let sources = vec![source("long.bvh", frames, 1.0), source("smaller.bvh", 2, 0.7)];
+        let on_bench = [Doing::Scrubbing, Doing::Playing, Doing::DraggingKey];
+        let in_sheet = [Doing::ScrubbingRetarget, Doing::DraggingContact];
+        let doings = on_bench.into_iter().chain(in_sheet.into_iter().filter(|_| frames == lengths[0]));
+        let doings: Vec<Doing> = doings.collect();
         for size in [[1440.0, 900.0], [2560.0, 1440.0]] {
-            let mut desk = Desk::new(Arc::clone(&source), size);
+            let mut desk = Desk::new(sources.clone(), size);
             println!("{} snags", desk.window.bench().snags().len());
-            for doing in [Doing::Scrubbing, Doing::Playing, Doing::DraggingKey] {
+            for &doing in &doings {
+                if doing == Doing::ScrubbingRetarget {
+                    desk.carry();
+                }
                 desk.start(doing);
                 let what = format!("{doing:?} {} × {}", size[0], size[1]);
                 let runs = if is_test { 2 } else { 120 };

@@ -308,6 +308,17 @@ fn a_file_with_several_clips_asks_which() {
     let mut bench = Bench::of_file(&path);
     let document = bench.window().bench().project.as_ref().unwrap().document().clone();
     assert!(document.works.len() > 5);
+    // Of a dozen those are listed whose names hold what is typed.
+    assert!(document.works.len() > 10);
+    let listed = |bench: &Bench<'_>| bench.0.query_all_by_label_contains("Clip Animal").count();
+    assert_eq!(listed(&bench), document.works.len());
+    bench.0.get_by_role(egui::accesskit::Role::TextInput).type_text("JUMP");
+    bench.run();
+    let names = document.works.iter().map(|work| work.name.to_lowercase());
+    assert_eq!(listed(&bench), names.filter(|name| name.contains("jump")).count());
+    bench.0.get_by_role(egui::accesskit::Role::TextInput).focus();
+    bench.press(egui::Modifiers::COMMAND, egui::Key::A);
+    bench.press(egui::Modifiers::NONE, egui::Key::Backspace);
     let name = document.works[3].name.clone();
     bench.click(&format!("Clip {name}"));
     assert_eq!(bench.window().bench().session.work, 3);

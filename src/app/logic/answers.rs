@@ -260,7 +260,9 @@ impl Window {
         self.show_project(project, wanted.unwrap_or(0));
         self.tell_notes(notes);
         self.offer_skeleton();
-        self.dialog = several.then_some(Dialog::ChooseClip);
+        if several {
+            self.show_dialog(Dialog::ChooseClip);
+        }
     }
 
     pub(in super::super) fn take_serial(&mut self) -> u64 {

@@ -270,9 +270,11 @@ pub fn figure_view(stage: &Stage, request: &FigureRequest<'_>) -> FigureView {
         scene.floor = Some(floor_under(stage, &own));
     }
     if has_axes(shown, &own.limbs) {
-        let names = ["x", "y", "z"].into_iter().cycle();
+        // Joints without a hierarchy stand at one place: letters for one of them are enough.
+        let named = request.chosen.or(own.limbs.first().map(|limb| limb.joint));
+        let its = own.limbs.iter().filter(|limb| Some(limb.joint) == named);
         let label = |(limb, name): (&FigureLimb, &str)| Label { at: limb.to, text: name.to_owned() };
-        scene.labels.extend(own.limbs.iter().zip(names).map(label));
+        scene.labels.extend(its.zip(["x", "y", "z"]).map(label));
     } else if request.shows_names {
         scene.names = joint_names(&shown.skeleton, &world, &camera, [request.chosen, request.hovered]);
     }

@@ -56,7 +56,9 @@ pub(crate) fn carry_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
             egui::Panel::bottom("carry report")
                 .frame(bare)
                 .resizable(true)
-                .default_size((size.y - bars::HEIGHT - settings::HEIGHT).clamp(110.0, 460.0))
+                .default_size(
+                    (size.y - bars::HEIGHT - settings::HEIGHT).clamp(110.0, 460.0).min(0.25 * size.y),
+                )
                 .size_range(70.0..=(size.y * 0.6).max(71.0))
                 .show(ui, |ui| held(ui, |ui| report::report_ui(ui, &sheet, scope)));
             egui::CentralPanel::no_frame()

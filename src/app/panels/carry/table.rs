@@ -9,8 +9,9 @@ use super::super::super::widgets::{focus_ring, hint, name_galley, name_ui, strip
 use super::super::Scope;
 use super::{Sheet, change};
 
-/// Height of the editor below the rows.
+/// Height of the editor below the rows, and the most that it takes of the whole.
 const EDITOR: f32 = 92.0;
+const EDITOR_SHARE: f32 = 0.45;
 
 /// Width of the list of source joints.
 const COMBO: f32 = 150.0;
@@ -47,8 +48,14 @@ pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
         ui.painter().text(pos2(x, head.center().y), Align2::LEFT_CENTER, words, font, scope.look.faint);
     }
     ui.painter().hline(head.x_range(), head.bottom(), (1.0, scope.look.grid));
-    let body =
-        Rect::from_min_max(pos2(area.left(), head.bottom()), pos2(area.right(), area.bottom() - EDITOR));
+    let editor_height = EDITOR.min(EDITOR_SHARE * area.height());
+    let end = pos2(area.right(), (area.bottom() - editor_height).max(head.bottom()));
+    let body = Rect::from_min_max(pos2(area.left(), head.bottom()), end);
+    // What all names share tells nothing in a narrow column.
+    let shared = [
+        Shared::of(facts.rows.iter().map(|row| row.target_label.as_str())),
+        Shared::of(facts.rows.iter().filter(|row| row.source.is_some()).map(|row| row.source_label.as_str())),
+    ];
     ui.scope_builder(egui::UiBuilder::new().max_rect(body), |ui| {
         if rows.is_empty() {
             let words = if facts.open.is_empty() {
@@ -60,7 +67,7 @@ pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
             return;
         }
         ui.spacing_mut().item_spacing.y = 0.0;
-        let scroll = ScrollArea::vertical().id_salt("carry rows").auto_shrink(false);
+        let scroll = ScrollArea::vertical().id_salt("carry rows").auto_shrink(false).min_scrolled_height(0.0);
         let scroll = match chosen_place(&rows, sheet).filter(|_| sheet.habits.scroll_to_row) {
             Some(place) => {
                 let y = (place as f32 * ROW_HEIGHT - body.height() * 0.4).max(0.0);
@@ -70,13 +77,14 @@ pub(super) fn table_ui(ui: &mut Ui, sheet: &Sheet<'_>, scope: &mut Scope<'_>) {
         };
         scroll.show_rows(ui, ROW_HEIGHT, rows.len(), |ui, shown| {
             for place in shown {
-                row_ui(ui, rows[place], &rows, place, &columns, sheet, scope);
+                row_ui(ui, &rows, place, &columns, shared, sheet, scope);
             }
         });
     });
     let editor = Rect::from_min_max(pos2(area.left(), body.bottom()), area.max);
     ui.painter().hline(editor.x_range(), editor.top(), (1.0, scope.look.line));
     ui.scope_builder(egui::UiBuilder::new().max_rect(editor.shrink2(vec2(INSET, 5.0))), |ui| {
+        ui.shrink_clip_rect(editor);
         let chosen = sheet.habits.row.and_then(|row| facts.rows.iter().find(|own| own.target == row));
         if let Some(row) = chosen {
             editor_ui(ui, row, sheet, scope);
@@ -124,14 +132,14 @@ fn chosen_place(rows: &[&CarryRow], sheet: &Sheet<'_>) -> Option<usize> {
 
 fn row_ui(
     ui: &mut Ui,
-    row: &CarryRow,
     rows: &[&CarryRow],
     place: usize,
     columns: &Columns,
+    shared: [Shared<'_>; 2],
     sheet: &Sheet<'_>,
     scope: &mut Scope<'_>,
 ) {
-    let look = scope.look;
+    let (look, row) = (scope.look, rows[place]);
     let (bounds, response) = ui.allocate_exact_size(vec2(ui.available_width(), ROW_HEIGHT), Sense::click());
     let is_chosen = sheet.habits.row == Some(row.target);
     response.widget_info(|| WidgetInfo::selected(Role::Button, true, is_chosen, row.sentence()));
@@ -141,7 +149,7 @@ fn row_ui(
     } else if response.hovered() {
         ui.painter().rect_filled(bounds, 0.0, look.hover);
     }
-    paint_row(ui, row, bounds, columns, is_chosen, &look);
+    paint_row(ui, row, bounds, columns, shared, is_chosen, &look);
     focus_ring(ui, &response);
     if response.has_focus() {
         ui.memory_mut(|memory| {
@@ -169,12 +177,20 @@ fn row_ui(
     }
 }
 
-fn paint_row(ui: &Ui, row: &CarryRow, bounds: Rect, columns: &Columns, is_chosen: bool, look: &Look) {
+fn paint_row(
+    ui: &Ui,
+    row: &CarryRow,
+    bounds: Rect,
+    columns: &Columns,
+    shared: [Shared<'_>; 2],
+    is_chosen: bool,
+    look: &Look,
+) {
     let y = bounds.center().y;
     // Names are cut in their middle, sentences at their end.
-    let name = |from: f32, to: f32, text: &str, ink: egui::Color32| {
+    let name = |from: f32, to: f32, text: &str, shared: Shared<'_>, ink: egui::Color32| {
         let place = Rect::from_min_max(pos2(from, bounds.top()), pos2(to - 6.0, bounds.bottom()));
-        name_ui(ui.painter(), place, text, Shared::default(), &FontId::proportional(13.0), ink);
+        name_ui(ui.painter(), place, text, shared, &FontId::proportional(13.0), ink);
     };
     let words = |from: f32, to: f32, text: &str, ink: egui::Color32| {
         let font = FontId::proportional(13.0);
@@ -195,8 +211,8 @@ fn paint_row(ui: &Ui, row: &CarryRow, bounds: Rect, columns: &Columns, is_chosen
     let is_driven = !matches!(row.state, CarryState::Free | CarryState::KeptAtRest);
     // Faint words would not be read on the chosen row.
     let ink = if is_driven || is_chosen { look.text } else { look.faint };
-    name(columns.target, columns.source, &row.target_label, ink);
-    name(columns.source, columns.sure, &row.source_label, ink);
+    name(columns.target, columns.source, &row.target_label, shared[0], ink);
+    name(columns.source, columns.sure, &row.source_label, shared[1], ink);
     let sure = match row.confidence {
         Some(own) if row.state == CarryState::Linked => format!("{:.0} %", own * 100.0),
         _ => row.state.word().to_owned(),

@@ -1,21 +1,45 @@
 //! Which clip of several to work on.
 
-use egui::{FontId, Role, ScrollArea, Sense, Ui, WidgetInfo, vec2};
+use egui::{FontId, Rect, RichText, Role, ScrollArea, Sense, TextEdit, Ui, WidgetInfo, pos2, vec2};
 
 use super::super::super::bench::file_name;
 use super::super::super::commands::Command;
-use super::super::super::view_models::counted;
+use super::super::super::view_models::{Shared, counted};
+use super::super::super::widgets::{focus_ring, hint, name_ui};
 use super::super::Scope;
-use super::sheet::heading;
+use super::form::Form;
+use super::sheet::{close_button, heading};
 
-pub(super) fn clips_sheet(ui: &mut Ui, scope: &mut Scope<'_>) {
+/// More clips than these are looked for by name.
+const FEW: usize = 10;
+
+pub(super) fn clips_sheet(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>) {
     heading(ui, "Choose clip");
     let Some(project) = &scope.bench.project else { return };
     let document = std::sync::Arc::clone(project.document());
     let look = scope.look;
-    ScrollArea::vertical().auto_shrink([false, true]).show(ui, |ui| {
+    if document.works.len() > FEW {
+        let label = ui.label(RichText::new("Look for").size(12.5).color(look.faint));
+        let field = TextEdit::singleline(&mut form.search).desired_width(f32::INFINITY);
+        let response = ui.add(field.hint_text("part of a clip's name")).labelled_by(label.id);
+        if !form.has_focus {
+            response.request_focus();
+            form.has_focus = true;
+        }
+    }
+    let wanted = form.search.to_lowercase();
+    let found: Vec<usize> = (0..document.works.len())
+        .filter(|&work| document.works[work].name.to_lowercase().contains(&wanted))
+        .collect();
+    let shared = Shared::of(document.works.iter().map(|work| work.name.as_str()));
+    let height = (ui.available_height() - 44.0).max(80.0);
+    ScrollArea::vertical().max_height(height).auto_shrink([false, true]).show(ui, |ui| {
         ui.spacing_mut().item_spacing.y = 0.0;
-        for (index, work) in document.works.iter().enumerate() {
+        if found.is_empty() {
+            ui.allocate_ui(vec2(ui.available_width(), 60.0), |ui| hint(ui, "No clip has this in its name"));
+        }
+        for index in found {
+            let work = &document.works[index];
             let clip = project.source_clip(index);
             let (bounds, response) = ui.allocate_exact_size(vec2(ui.available_width(), 28.0), Sense::click());
             let is_on = index == scope.bench.session.work;
@@ -26,7 +50,7 @@ pub(super) fn clips_sheet(ui: &mut Ui, scope: &mut Scope<'_>) {
                 ui.painter().rect_filled(bounds, 4.0, if is_on { look.chosen } else { look.hover });
             }
             if is_on {
-                let bar = egui::Rect::from_min_size(bounds.min, vec2(3.0, bounds.height()));
+                let bar = Rect::from_min_size(bounds.min, vec2(3.0, bounds.height()));
                 ui.painter().rect_filled(bar, 0.0, look.selection);
             }
             let y = bounds.center().y;
@@ -37,15 +61,6 @@ pub(super) fn clips_sheet(ui: &mut Ui, scope: &mut Scope<'_>) {
             } else {
                 work.name.clone()
             };
-            let mut job =
-                egui::text::LayoutJob::simple_singleline(words, FontId::proportional(14.0), look.text);
-            job.wrap = egui::text::TextWrapping::truncate_at_width((bounds.width() - 210.0).max(60.0));
-            let galley = ui.painter().layout_job(job);
-            ui.painter().galley(
-                egui::pos2(bounds.left() + 12.0, y - galley.size().y / 2.0),
-                galley,
-                look.text,
-            );
             let numbers = clip.map_or("missing".to_owned(), |clip| {
                 let joints = clip.skeleton.listed().count();
                 format!(
@@ -55,17 +70,25 @@ pub(super) fn clips_sheet(ui: &mut Ui, scope: &mut Scope<'_>) {
                     counted(joints, "joint")
                 )
             });
-            ui.painter().text(
-                egui::pos2(bounds.right() - 8.0, y),
+            let numbers = ui.painter().text(
+                pos2(bounds.right() - 8.0, y),
                 egui::Align2::RIGHT_CENTER,
                 numbers,
                 FontId::proportional(12.5),
                 look.faint,
             );
+            let room = Rect::from_min_max(
+                bounds.min + vec2(12.0, 0.0),
+                pos2(numbers.left() - 12.0, bounds.bottom()),
+            );
+            let is_cut = name_ui(ui.painter(), room, &words, shared, &FontId::proportional(14.0), look.text);
+            focus_ring(ui, &response);
+            let response = if is_cut { response.on_hover_text(words) } else { response };
             if response.clicked() {
                 scope.out.push(Command::ShowClip(index));
                 scope.out.push(Command::CloseDialog);
             }
         }
     });
+    close_button(ui, scope);
 }
