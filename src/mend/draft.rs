@@ -255,7 +255,7 @@ impl Draft {
         }
         let near = degrees[first.saturating_sub(1)].map(f64::to_radians);
         let Some(found) = angles_between(order, &self.keys[first..=last], near, after) else { return };
-        for (own, triple) in Arc::make_mut(degrees)[first..=last].iter_mut().zip(found) {
+        for (own, triple) in degrees.make_mut()[first..=last].iter_mut().zip(found) {
             *own = triple.map(f64::to_degrees);
         }
     }
@@ -380,7 +380,7 @@ mod tests {
         let mut draft = draft(truth.clone());
         // As a chain of nearest triples may come out on the other side of the pole.
         let Form::Angles { degrees, .. } = &mut draft.form else { unreachable!() };
-        for own in &mut Arc::make_mut(degrees)[20..30] {
+        for own in &mut degrees.make_mut()[20..30] {
             *own = [own[0] + 180.0, 180.0 - own[1], own[2] - 180.0];
         }
         assert!(largest_step(&draft, 0) > 170.0);
