@@ -230,7 +230,7 @@ fn signs_near(level: Level, rotors: Parts<'_, f64, 4>, before: &mut Before, sign
     let mut is_minus = before.1 < 0.0;
     for (sign, &dot) in signs.iter_mut().zip(&dots) {
         // A dot product of 0 gives a plus. Both are asked, so that nothing is left to guess.
-        is_minus = (is_minus & (dot > 0.0)) | (!is_minus & (dot < 0.0));
+        is_minus = if is_minus { dot > 0.0 } else { dot < 0.0 };
         *sign = if is_minus { -1.0 } else { 1.0 };
     }
     *before = (rotor_at(rotors, count - 1), signs[count - 1]);
