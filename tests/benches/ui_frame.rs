@@ -177,7 +177,7 @@ impl Desk {
         self.frame += 1;
         let step = self.frame as f64;
         match doing {
-            Doing::Scrubbing => {
+            Doing::Scrubbing | Doing::ScrubbingRetarget => {
                 let share = 0.5 + 0.45 * (step * 0.013).sin();
                 self.window.ask(Command::Scrub(share * self.duration_secs));
             }
@@ -187,10 +187,6 @@ impl Desk {
                 let edits = vec![key_edit(&clip, 0.3 * (step * 0.05).sin())];
                 let step: PassStep = KeysPass { edits }.into();
                 self.window.ask(Command::PreviewPass(self.pass, Box::new(step)));
-            }
-            Doing::ScrubbingRetarget => {
-                let share = 0.5 + 0.45 * (step * 0.013).sin();
-                self.window.ask(Command::Scrub(share * self.duration_secs));
             }
             Doing::DraggingContact => {
                 let (id, pass) = self.window.bench().carried_pass().expect("a retarget");
