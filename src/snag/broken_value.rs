@@ -1,7 +1,7 @@
 //! Stored values that are no rotation: not finite, zero, or off unit length.
 
 use crate::clip::{PathKind, Stored};
-use crate::rotor::{Rotor, slerp};
+use crate::rotor::slerp;
 
 use super::branches::is_finite;
 use super::scan::{Finding, Scan, View, runs, runs_of};
@@ -9,10 +9,6 @@ use super::{Memory, Remedy, Snag, SnagKind};
 
 /// Lengths further from 1 than this are off.
 const NORM_TOLERANCE: f64 = 1e-3;
-
-/// What 1 is where glTF keeps a turn in numbers of 8 bits (glTF 2.0, section 3.11). Four of them, each rounded by up to a half, leave a length
-/// that is off by up to one part in so many.
-const EIGHT_BITS_ONE: f64 = 127.0;
 
 /// Between these lengths only the length is wrong: the direction is trusted.
 const SOUND_LENGTHS: std::ops::RangeInclusive<f64> = 0.5..=2.0;
@@ -65,15 +61,6 @@ pub(super) fn find(view: View<'_>, joint: usize, memory: &mut Memory) -> Vec<Sna
         .collect()
 }
 
-/// How far from 1 the length of a key may be. Keys of 8 bits stay such when they are written as floats, and show it.
-fn tolerance(key: Rotor) -> f64 {
-    /// What a quotient of 32 bits may be off, as many times.
-    const SAME: f64 = 1e-4;
-    let is_whole = |part: f64| (part * EIGHT_BITS_ONE - (part * EIGHT_BITS_ONE).round()).abs() <= SAME;
-    let is_of_eight_bits = key.to_xyzw().into_iter().all(is_whole);
-    if is_of_eight_bits { 1.0 / EIGHT_BITS_ONE } else { NORM_TOLERANCE }
-}
-
 /// What is wrong with a stored rotor.
 fn fault(scan: &Scan<'_>, key: usize) -> Option<Fault> {
     let norm = scan.keys[key].norm();
@@ -84,7 +71,7 @@ fn fault(scan: &Scan<'_>, key: usize) -> Option<Fault> {
     });
     if !tangents_finite {
         Some(Fault::NoRotation)
-    } else if (norm - 1.0).abs() <= tolerance(scan.keys[key]) {
+    } else if (norm - 1.0).abs() <= NORM_TOLERANCE {
         None
     } else if SOUND_LENGTHS.contains(&norm) || points_along(scan, key) {
         Some(Fault::OffUnit)

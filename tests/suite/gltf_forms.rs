@@ -6,10 +6,8 @@ use glam::DVec3;
 use serde_json::{Value, json};
 use turnwright::clip::Clip;
 use turnwright::exchange::{Note, gltf};
-use turnwright::mend::{SurveyOptions, survey};
 use turnwright::rotor::{Axis, Rotor};
 use turnwright::skeleton::JointKind;
-use turnwright::snag::{SnagKind, Unwatched};
 
 use crate::gltf_broken::{set_float, small};
 use crate::support::assert_close;
@@ -69,31 +67,6 @@ fn all_integer_encodings_of_rotations() {
     check(5121, &[0, 51, 255, 204], &[[0.0, 0.2, 1.0, 0.8]]);
     check(5122, &[0, 0, 0xFF, 0x7F, 0x00, 0x80, 0x01, 0x80], &[[0.0, 1.0, -1.0, -1.0]]);
     check(5123, &[0, 0, 0xFF, 0xFF, 0x33, 0x33, 0xCC, 0xCC], &[[0.0, 1.0, 0.2, 0.8]]);
-}
-
-/// Four numbers rounded to 127ths: a length is off by up to 1/127, which is no fault of the keys; by a tenth is.
-#[test]
-fn what_eight_bits_round_is_not_broken_and_stays_sound_as_floats() {
-    let turn = |half: f64| [0.0, 0.0, half.sin(), half.cos()].map(|part| (part * 127.0).round() as i8 as u8);
-    let bytes: Vec<u8> = (0..40).flat_map(|key| turn(0.03 * f64::from(key))).collect();
-    let broken = |clip: &Clip| -> Vec<usize> {
-        let options = SurveyOptions { kinds: vec![SnagKind::BrokenValue], limits: None };
-        let found = survey(clip, &options, &Unwatched).unwrap();
-        found.snags.iter().map(|snag| snag.first_key).collect()
-    };
-    let (document, clips, _) = read(&with_rotations(5120, true, None, &bytes, 40));
-    let lengths = clips[0].rotation(0).unwrap().keys.iter().map(|key| (key.norm() - 1.0).abs());
-    assert!(lengths.fold(0.0, f64::max) > 3e-3, "some are off by more than floats may be");
-    assert_eq!(broken(&clips[0]), [] as [usize; 0]);
-    // With another key it is written as floats, the others with their own numbers.
-    let track = clips[0].rotation(0).unwrap();
-    let changed = clips[0].with_rotation(0, track.with_keys(&[(7, Rotor::IDENTITY)]));
-    let output = gltf::write_as(&document, &[(0, &clips[0], &changed)], "form", gltf::Form::Glb).unwrap();
-    let (_, again, _) = gltf::read(output.bytes, "form.glb", &|_| Err(String::new())).unwrap();
-    assert_eq!(broken(&again[0]), [] as [usize; 0]);
-    let mut shorter = bytes;
-    shorter[4 * 20..4 * 21].copy_from_slice(&[0, 0, 60, 97]);
-    assert_eq!(broken(&read(&with_rotations(5120, true, None, &shorter, 40)).1[0]), [20]);
 }
 
 #[test]

@@ -128,7 +128,7 @@ fn looped(
     };
     if let Some(least_secs) = args.find_loop {
         let parts = blend::best_loops(clip, least_secs, 1, MOST_TIMES)
-            .map_err(|error| wrong_loop("--find-loop", &error, "choose a shorter one"))?;
+            .map_err(|error| wrong_loop("--find-loop", &error, "choose another length"))?;
         if let Some(part) = parts.first() {
             let (from, to) = (part.from_secs, part.to_secs);
             output.say(&format!("{label}: from {from:.3} s to {to:.3} s, poses {:.4} apart", part.distance));

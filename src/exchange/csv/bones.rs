@@ -152,16 +152,7 @@ fn bone_after(rest: &str, kind: JointKind, may_be_tip: bool, line: u32) -> Resul
     let wrong = || CsvError::unexpected(line, expected, quoted(rest));
     // Names may hold blanks, so the words are looked for from the end.
     let (names, values) = rest.rsplit_once(" offset ").ok_or_else(wrong)?;
-    let (name, parent) = match names.rsplit_once(" parent") {
-        Some((name, parent)) if parent.is_empty() || parent.starts_with(char::is_whitespace) => {
-            (name.trim(), parent.trim())
-        }
-        _ => (names.trim(), ""),
-    };
-    let unquoted = |text: &str| {
-        text.strip_prefix('"').and_then(|text| text.strip_suffix('"')).unwrap_or(text).to_owned()
-    };
-    let (name, parent) = (unquoted(name), unquoted(parent));
+    let (name, parent) = names_in_quotes(names).unwrap_or_else(|| plain_names(names));
     let mut words = values.split_whitespace();
     let offset = numbers(&mut words, 3).ok_or_else(wrong)?;
     let mut rest_pose = Transform::from_translation(DVec3::new(offset[0], offset[1], offset[2]));
@@ -179,8 +170,63 @@ fn bone_after(rest: &str, kind: JointKind, may_be_tip: bool, line: u32) -> Resul
             _ => return Err(wrong()),
         }
     }
+    Ok(Bone { name, parent, rest: rest_pose, kind, may_be_tip, line })
+}
+
+/// `NAME parent NAME`, or a name alone for a root, or one with the parent `-`.
+fn plain_names(names: &str) -> (String, Option<String>) {
+    let (name, parent) = match names.rsplit_once(" parent") {
+        Some((name, parent)) if parent.is_empty() || parent.starts_with(char::is_whitespace) => {
+            (name.trim(), parent.trim())
+        }
+        _ => (names.trim(), ""),
+    };
+    let unquoted = |text: &str| {
+        text.strip_prefix('"').and_then(|text| text.strip_suffix('"')).unwrap_or(text).to_owned()
+    };
+    let parent = unquoted(parent);
     let is_root = matches!(parent.as_str(), "" | "-" | "none");
-    Ok(Bone { name, parent: (!is_root).then_some(parent), rest: rest_pose, kind, may_be_tip, line })
+    (unquoted(name), (!is_root).then_some(parent))
+}
+
+/// As [`plain_names`], of names in quotes as [`names_text`] writes them.
+fn names_in_quotes(names: &str) -> Option<(String, Option<String>)> {
+    let (name, rest) = in_quotes(names)?;
+    let parent = rest.strip_prefix("parent ")?.trim();
+    if parent == "-" {
+        return Some((name, None));
+    }
+    let (parent, rest) = in_quotes(parent)?;
+    rest.is_empty().then_some((name, Some(parent)))
+}
+
+/// The name in quotes at the start, in which a quote stands twice (as in RFC 4180), and what follows after blanks.
+fn in_quotes(text: &str) -> Option<(String, &str)> {
+    let mut rest = text.strip_prefix('"')?;
+    let mut name = String::new();
+    loop {
+        let (part, after) = rest.split_once('"')?;
+        name.push_str(part);
+        match after.strip_prefix('"') {
+            Some(more) => {
+                name.push('"');
+                rest = more;
+            }
+            None => return Some((name, after.trim_start())),
+        }
+    }
+}
+
+/// The names of a joint and its parent for its line: in quotes where they would be read as others.
+pub(super) fn names_text(name: &str, parent: Option<&str>) -> String {
+    let plain = format!("{name} parent {}", parent.unwrap_or("-"));
+    let is_read = names_in_quotes(&plain).is_none()
+        && plain_names(&plain) == (name.to_owned(), parent.map(str::to_owned));
+    if is_read {
+        return plain;
+    }
+    let quoted = |name: &str| format!("\"{}\"", name.replace('"', "\"\""));
+    format!("{} parent {}", quoted(name), parent.map_or("-".to_owned(), quoted))
 }
 
 /// The next `count` words as finite numbers.

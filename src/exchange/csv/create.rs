@@ -6,7 +6,9 @@ use crate::clip::{Clip, RotationTrack};
 use crate::exchange::Note;
 use crate::exchange::losses;
 use crate::rotor::Rotor;
-use crate::skeleton::{JointKind, Transform};
+use crate::skeleton::{JointKind, Skeleton, Transform};
+
+use super::bones::names_text;
 
 /// Writes any clip as CSV: the skeleton as lines before the header, then a row for each frame of its grid, with a
 /// quaternion for each joint, and its place where that is animated.
@@ -42,9 +44,9 @@ pub fn from_clip_to(clip: &Clip, out: &mut dyn Write) -> io::Result<Vec<Note>> {
     bytes.extend_from_slice(b"time");
     for &joint in &written {
         let mut put = |part: &str| {
-            let name = format!("{}.{part}", skeleton.label(joint));
+            let name = format!("{}.{part}", line_name(skeleton, joint));
             bytes.push(b',');
-            if name.contains([',', '"', '\n', '\r']) || name.trim() != name || name.starts_with('#') {
+            if name.contains([',', '"']) || name.starts_with('#') {
                 bytes.extend_from_slice(format!("\"{}\"", name.replace('"', "\"\"")).as_bytes());
             } else {
                 bytes.extend_from_slice(name.as_bytes());
@@ -95,23 +97,27 @@ fn turn(clip: &Clip, track: &RotationTrack, frame: usize, time: f64) -> Rotor {
     if is_keyed { track.keys.rotor(frame) } else { track.at(time) }
 }
 
+/// The name of a joint as a line and a cell can hold it: cells are read without the blanks around them.
+fn line_name(skeleton: &Skeleton, joint: usize) -> String {
+    skeleton.label(joint).replace(['\n', '\r'], "_").trim().to_owned()
+}
+
 /// The lines of a joint and its tips.
 fn bone_lines(clip: &Clip, index: usize, bytes: &mut Vec<u8>) {
     let skeleton = &clip.skeleton;
     let joint = &skeleton.joints()[index];
-    // Names end with their line.
-    let name = |joint: usize| skeleton.label(joint).replace(['\n', '\r'], "_");
     let word = match joint.kind {
         JointKind::Joint => "joint",
         JointKind::Carrier => "carrier",
     };
-    let parent = joint.parent.map_or("-".to_owned(), name);
+    let own = line_name(skeleton, index);
+    let parent = joint.parent.map(|parent| line_name(skeleton, parent));
     let numbers =
         |values: &[f64]| values.iter().map(|&value| number_text(value)).collect::<Vec<_>>().join(" ");
     let Transform { translation, rotation, scale } = joint.rest;
     // Writing into a Vec can't fail.
-    let _ =
-        write!(bytes, "# {word} {} parent {parent} offset {}", name(index), numbers(&translation.to_array()));
+    let names = names_text(&own, parent.as_deref());
+    let _ = write!(bytes, "# {word} {names} offset {}", numbers(&translation.to_array()));
     if rotation != Rotor::IDENTITY {
         let _ = write!(bytes, " turn {}", numbers(&rotation.to_xyzw()));
     }
@@ -120,13 +126,13 @@ fn bone_lines(clip: &Clip, index: usize, bytes: &mut Vec<u8>) {
     }
     bytes.push(b'\n');
     for (tip, place) in joint.tips.iter().enumerate() {
-        let own = name(index);
         // A joint may bear that name.
         let mut tip = format!("{own}_tip{tip}");
         while skeleton.find(&tip).is_some() {
             tip.push('_');
         }
-        let _ = writeln!(bytes, "# tip {tip} parent {own} offset {}", numbers(&place.to_array()));
+        let names = names_text(&tip, Some(&own));
+        let _ = writeln!(bytes, "# tip {names} offset {}", numbers(&place.to_array()));
     }
 }
 

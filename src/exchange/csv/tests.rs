@@ -1,8 +1,13 @@
 //! Spellings that are read, inputs that are refused, and bytes at random.
 
-use crate::clip::{Clip, Stored};
+use std::sync::Arc;
+
+use glam::DVec3;
+
+use crate::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Stored, Times};
 use crate::exchange::Note;
 use crate::rotor::{Axis, Bivector, EulerOrder, Rotor};
+use crate::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use super::{CsvOptions, Document, TimeUnit, from_clip, hierarchy, read, write};
 
@@ -208,7 +213,7 @@ fn of_rows_at_one_time_the_last_counts_and_the_others_stay() {
             "line 4: expected rising times, found 3 rows at the time of the row before: of each time the last row is used, the others are left as they are"
         ]
     );
-    assert_eq!(clip.grid.times, crate::clip::Times::Listed([0.0, 0.01, 0.02, 0.03].into()));
+    assert_eq!(clip.grid.times, Times::Listed([0.0, 0.01, 0.02, 0.03].into()));
     assert_eq!(clip.rotation(0).unwrap().keys[2], Rotor::from_xyzw([0.0, 0.0, 1.0, 0.0]));
     assert_eq!(write(&document, &clip, &clip).0, REPEATED.as_bytes());
     // What said the same as the row that is used changes along with it; what said something else stays.
@@ -307,7 +312,7 @@ fn clock_times_count_from_the_first_row() {
 fn a_stretch_keeps_the_text_of_its_cells() {
     let (document, clip, _) = opened(SMALL.replace("0.8", "0.80").replace("31,", "31.00,"));
     let mut short = clip.clone();
-    let times = crate::clip::Times::Listed([0.0, 0.75].into());
+    let times = Times::Listed([0.0, 0.75].into());
     short.grid.times = times.clone();
     for joint in &mut short.joints {
         let mut tracks = (**joint).clone();
@@ -324,7 +329,7 @@ fn a_stretch_keeps_the_text_of_its_cells() {
             track.times = times.clone();
             track.keys = track.keys[1..].into();
         }
-        *joint = std::sync::Arc::new(tracks);
+        *joint = Arc::new(tracks);
     }
     let (written, _) = write(&document, &clip, &short);
     let header = SMALL.lines().next().unwrap();
@@ -332,6 +337,68 @@ fn a_stretch_keeps_the_text_of_its_cells() {
         String::from_utf8(written).unwrap(),
         format!("{header}\n0,1.5,2,3,0.6,0,0.80,0,11,21,31.00,0,45,0\n0.75,2,2,3,0,-1,0,0,12,22,32,30,0,0\n")
     );
+}
+
+#[test]
+fn a_new_file_keeps_names_of_any_kind_and_who_hangs_on_whom() {
+    let names = [
+        "a b",
+        "a.qx",
+        "#x",
+        "# joint y parent z",
+        "q\"uo,te",
+        "{",
+        "  lead",
+        "trail  ",
+        "tab\there",
+        "",
+        "-",
+        "none",
+        "a;b",
+        "\"quoted\"",
+        "x parent \"y",
+        "z offset 1 2 3",
+        "parent",
+        "a=1+1",
+        "\"",
+        "\"\"",
+        "\" parent -",
+        "ünï/code:|",
+        "x",
+    ];
+    let joints: Vec<Joint> = (0..names.len())
+        .map(|number| {
+            let parent = number.checked_sub(1);
+            let rest = Transform::from_translation(DVec3::new(0.0, 1.0, number as f64));
+            let tips = vec![DVec3::new(0.5, 0.0, 0.0); usize::from(number % 3 == 0)];
+            Joint { name: names[number].to_owned(), number, parent, rest, kind: JointKind::Joint, tips }
+        })
+        .collect();
+    let skeleton = Arc::new(Skeleton::new(joints).unwrap());
+    let times = Times::Even { step_secs: 0.5, count: 2 };
+    let track = |number: usize| {
+        let turn = |secs: f64| EulerOrder::ZXY.to_rotor([0.1 * number as f64, secs, 0.2]);
+        RotationTrack::from_rotors(times.clone(), [turn(0.0), turn(0.5)])
+    };
+    let tracks = |number| JointTracks { rotation: Some(track(number)), ..JointTracks::default() };
+    let clip = Clip {
+        name: "names".to_owned(),
+        joints: (0..names.len()).map(|number| Arc::new(tracks(number))).collect(),
+        skeleton,
+        duration_secs: 0.5,
+        grid: FrameGrid { times: times.clone(), rate: 2.0 },
+    };
+    let (written, notes) = from_clip(&clip);
+    assert_eq!(notes, []);
+    let (_, again, notes) = opened(&written);
+    assert_eq!(notes, [] as [&str; 0], "{}", String::from_utf8_lossy(&written));
+    for joint in 0..names.len() {
+        // The blanks around a cell are none of its own.
+        assert_eq!(again.skeleton.label(joint), clip.skeleton.label(joint).trim());
+        let (new, old) = (&again.skeleton.joints()[joint], &clip.skeleton.joints()[joint]);
+        assert_eq!((new.parent, new.rest, &new.tips), (old.parent, old.rest, &old.tips), "{:?}", old.name);
+        assert_eq!(again.rotation(joint).unwrap().keys, clip.rotation(joint).unwrap().keys, "{:?}", old.name);
+    }
 }
 
 #[test]

@@ -61,8 +61,10 @@ fn data(rest: &str, place: &str) -> Result<Vec<u8>, GltfError> {
     } else {
         BASE64.decode(content)
     };
-    decoded
-        .map_err(|error| GltfError::unlike(place, "base64 in the data URI", error.to_string().to_lowercase()))
+    decoded.map_err(|error| {
+        let found = error.to_string().to_lowercase();
+        GltfError::unlike(place, "base64 in the data URI", found.trim_end_matches('.').to_owned())
+    })
 }
 
 fn relative_path(uri: &str, place: &str) -> Result<String, GltfError> {
