@@ -3,36 +3,40 @@
 
 use super::real::Quotient;
 
-/// `sin √y / √y`, 0 ≤ y ≤ 0.6169: factors of rising powers.
-pub(super) const SINE_OVER_ANGLE_F64: [f64; 7] = [
+/// `sin √y / √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
+pub(super) const SINE_OVER_ANGLE_F64: [f64; 9] = [
     1.0,
     -0.16666666666666666,
-    0.008333333333330948,
-    -0.00019841269836758557,
-    2.7557316102543096e-06,
-    -2.5051131843056034e-08,
-    1.5918129154550544e-10,
+    0.008333333333333316,
+    -0.00019841269841254974,
+    2.755731921916321e-06,
+    -2.5052107616993125e-08,
+    1.6058977312265895e-10,
+    -7.643970290470771e-13,
+    2.731444688085806e-15,
 ];
 
-/// `sin √y / √y`, 0 ≤ y ≤ 2.467: factors of rising powers.
+/// `sin √y / √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
 pub(super) const SINE_OVER_ANGLE_F32: [f32; 5] =
     [1.0, -0.16666666, 0.0083332425, -0.0001982274, 2.6347564e-06];
 
-/// `cos √y`, 0 ≤ y ≤ 0.6169: factors of rising powers.
-pub(super) const COSINE_F64: [f64; 7] = [
+/// `cos √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
+pub(super) const COSINE_F64: [f64; 9] = [
     1.0,
-    -0.49999999999999967,
-    0.04166666666663093,
-    -0.0013888888882127924,
-    2.480158262333795e-05,
-    -2.755585550901141e-07,
-    2.066550465988738e-09,
+    -0.5,
+    0.04166666666666634,
+    -0.0013888888888860709,
+    2.4801587292446166e-05,
+    -2.7557317767314736e-07,
+    2.0876630867047524e-09,
+    -1.1464689873732412e-11,
+    4.627675835547813e-14,
 ];
 
-/// `cos √y`, 0 ≤ y ≤ 2.467: factors of rising powers.
+/// `cos √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
 pub(super) const COSINE_F32: [f32; 6] = [1.0, -0.5, 0.04166666, -0.0013888652, 2.477458e-05, -2.6297516e-07];
 
-/// `atan √y / √y`, 0 ≤ y ≤ 0.1716: factors of rising powers.
+/// `atan √y / √y`, 0 ≤ y ≤ tan²(π/8): factors of rising powers.
 pub(super) const ARC_TANGENT_F64: [f64; 13] = [
     1.0,
     -0.3333333333333333,
@@ -49,7 +53,7 @@ pub(super) const ARC_TANGENT_F64: [f64; 13] = [
     0.01628574303651472,
 ];
 
-/// `θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u ≤ 1.0: factors of rising powers.
+/// `θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u ≤ 1: factors of rising powers.
 pub(super) const MIDDLE_RATE_F64: [f64; 6] = [
     1.0,
     0.08333516435921424,
@@ -59,25 +63,30 @@ pub(super) const MIDDLE_RATE_F64: [f64; 6] = [
     0.002310913866974811,
 ];
 
-/// `θ/(2 sin θ/2)` of `v = 2 − 2 cos θ/2`, 0 ≤ v ≤ 0.5858: factors of rising powers.
-pub(super) const ARC_OVER_CHORD_F64: [f64; 12] = [
-    1.0,
-    0.1666666666666667,
-    0.03333333333331488,
-    0.007142857144113382,
-    0.0015873015540314253,
-    0.00036075081122810104,
-    8.324653925813563e-05,
-    1.9442304068149153e-05,
-    4.516913474516205e-06,
-    1.1880654512373967e-06,
-    1.324662609861103e-07,
-    1.397673504600763e-07,
-];
+/// `θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
+pub(super) const SQUARE_OVER_REST_F64: Quotient<f64, 7, 6> = Quotient {
+    above: [
+        3782.9580883901413,
+        9170.712128223551,
+        8030.071469148445,
+        3080.109084186303,
+        496.23752657660634,
+        25.82378614251693,
+        0.13387410424044138,
+    ],
+    below: [
+        1533.1751647401782,
+        4135.673714711858,
+        4182.046581251605,
+        1967.8273448914122,
+        433.8853124173312,
+        39.41486037351756,
+    ],
+};
 
-/// `θ/(2 sin θ/2)` of `v = 2 − 2 cos θ/2`, 0 ≤ v ≤ 0.5858: factors of rising powers.
-pub(super) const ARC_OVER_CHORD_F32: [f32; 6] =
-    [1.0, 0.16666669, 0.033331964, 0.0071613025, 0.0015019185, 0.0005157761];
+/// `θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
+pub(super) const SQUARE_OVER_REST_F32: Quotient<f32, 4, 3> =
+    Quotient { above: [64.02327, 67.84206, 15.455492, 0.32054812], below: [25.947655, 34.58527, 12.287759] };
 
 /// `θ/sin θ` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
 pub(super) const ANGLE_OVER_SINE_F64: Quotient<f64, 7, 6> = Quotient {

@@ -96,25 +96,22 @@ fn rotors<const PROPER: bool>(
     for axis in 0..3 {
         if are_short {
             for row in 0..ROWS {
-                rests[row] = 0.25 * angles[axis][row];
+                rests[row] = 0.5 * angles[axis][row];
                 squares[row] = rests[row] * rests[row];
             }
         } else {
             for row in 0..ROWS {
                 let (rest, sign) = half(angles[axis][row]);
-                rests[row] = 0.5 * rest;
-                squares[row] = rests[row] * rests[row];
+                rests[row] = rest;
+                squares[row] = rest * rest;
                 signs[row] *= sign;
             }
         }
         for row in 0..ROWS {
-            rests[row] *= squares[row].sine_over_angle();
+            sines[axis][row] = rests[row] * squares[row].sine_over_angle();
         }
-        // From a quarter of the angle to its half.
         for row in 0..ROWS {
-            let twice = rests[row] + rests[row];
-            sines[axis][row] = twice * squares[row].cosine();
-            cosines[axis][row] = 1.0 - twice * rests[row];
+            cosines[axis][row] = squares[row].cosine();
         }
     }
     // The sign of the first goes into all parts.

@@ -9,7 +9,8 @@ use super::streams::{Parts, PartsMut};
 /// The rotors of turns given as plane angles in radians, row by row: [`Rotor::from_plane_angles`] within 1e-15 rad
 /// (`f32`: 3e-7 rad), of any size.
 ///
-/// Sine and cosine come from polynomials of the turn's square up to 180°, as far as `log` gives it; longer turns take their time.
+/// Sine and cosine of half the turn are polynomials of its square up to 180°, as far as `log` gives it; longer turns take
+/// their time.
 ///
 /// # Panics
 /// When the streams differ in length.
@@ -29,30 +30,19 @@ pub fn exp<F: Real>(level: Level, angles: Parts<'_, F, 3>, out: PartsMut<'_, F, 
 
 #[inline(always)]
 fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&mut Column<F, ROWS>; 4]) {
-    // As far as the polynomials reach, and a hair.
-    let (share, most) = if F::FROM_QUARTERS { (0.25, 0.616_850_6) } else { (0.5, 2.467_402) };
-    let (scale, most) = (F::narrowed(share * share), F::narrowed(most));
+    // (π/2)² and a hair, as far as the polynomials reach.
+    let most = F::narrowed(2.467_402);
     let [yz, zx, xy] = angles;
     let (mut squares, mut guards, mut factors) = ([F::ZERO; ROWS], [F::ZERO; ROWS], [F::ZERO; ROWS]);
     for row in 0..ROWS {
-        squares[row] = scale * (yz[row] * yz[row] + zx[row] * zx[row] + xy[row] * xy[row]);
+        squares[row] = F::HALF * F::HALF * (yz[row] * yz[row] + zx[row] * zx[row] + xy[row] * xy[row]);
         guards[row] = most - squares[row];
     }
     for row in 0..ROWS {
-        factors[row] = squares[row].sine_over_angle();
+        out[0][row] = squares[row].cosine();
     }
-    if F::FROM_QUARTERS {
-        // With `h` a quarter of the turn: `cos 2h = 1 − 2 sin² h` and `sin 2h/2h = (sin h/h) cos h`. (`cos² h − sin² h` rounds twice as much.)
-        for row in 0..ROWS {
-            let (square, factor) = (squares[row], factors[row]);
-            out[0][row] = F::ONE - F::TWO * square * (factor * factor);
-            factors[row] = -F::HALF * factor * square.cosine();
-        }
-    } else {
-        for row in 0..ROWS {
-            out[0][row] = squares[row].cosine();
-            factors[row] = -F::HALF * factors[row];
-        }
+    for row in 0..ROWS {
+        factors[row] = -F::HALF * squares[row].sine_over_angle();
     }
     for part in 0..3 {
         for row in 0..ROWS {

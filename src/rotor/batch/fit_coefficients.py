@@ -7,9 +7,8 @@ Each polynomial is a Chebyshev fit in 60 digits, of the function without its val
 its function at the Chebyshev points. The error printed is the largest of the fit itself, before its factors are rounded to the
 machine's numbers.
 
-Why a quotient of `d = cos θ` where the angle comes out of a cosine: 6 over 6 does what takes a polynomial of degree 18, its two halves don't
-wait for each other, and all its factors are above 0, so that nothing cancels (in `1 − d` they alternate and lose two digits). Of `v = 2 − 2 cos θ/2`
-a polynomial does: its hard place at 4 is far, and as 1 and a little more it is right to its last digit.
+Why quotients of `d = cos θ` where the angle comes out of a cosine: 6 over 6 does what takes a polynomial of degree 18, its two halves don't
+wait for each other, and all its factors are above 0, so that nothing cancels (in `1 − d` they alternate and lose two digits).
 """
 
 import pathlib
@@ -20,10 +19,9 @@ import mpmath as mp
 mp.mp.dps = 60
 
 
-def arc_over_chord(v):
-    """θ/(2 sin θ/2) with v = 2 − 2 cos θ/2: 1 at v = 0."""
-    half = mp.acos(1 - v / 2)
-    return mp.mpf(1) if v == 0 else half / mp.sin(half)
+def square_over_rest(d):
+    """θ²/(1 − d) with d = cos θ: 2 at d = 1."""
+    return mp.mpf(2) if d == 1 else mp.acos(d) ** 2 / (1 - d)
 
 
 def angle_over_sine(d):
@@ -53,22 +51,21 @@ def middle_rate(u):
 
 
 QUARTER = (mp.pi / 2) ** 2
-EIGHTH = (mp.pi / 4) ** 2
 EIGHTH_TANGENT = mp.tan(mp.pi / 8) ** 2
 # A hair beyond the range, so that rounding at its end stays inside.
 HAIR = mp.mpf("1.000001")
 
-# name, what it is, function, ends of the range and degrees for f64 and f32 (None: no f32 kernel needs it).
+# name, what it is, function, end of the range, degree for f64 and f32 (None: no f32 kernel needs it).
 FITS = [
-    ("SINE_OVER_ANGLE", "`sin √y / √y`, 0 ≤ y", sine_over_angle, (EIGHTH, 6), (QUARTER, 4)),
-    ("COSINE", "`cos √y`, 0 ≤ y", cosine, (EIGHTH, 6), (QUARTER, 5)),
-    ("ARC_TANGENT", "`atan √y / √y`, 0 ≤ y", arc_tangent, (EIGHTH_TANGENT, 12), None),
-    ("MIDDLE_RATE", "`θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u", middle_rate, (mp.mpf(1), 5), None),
-    ("ARC_OVER_CHORD", "`θ/(2 sin θ/2)` of `v = 2 − 2 cos θ/2`, 0 ≤ v", arc_over_chord, (2 - mp.sqrt(2), 11), (2 - mp.sqrt(2), 5)),
+    ("SINE_OVER_ANGLE", "`sin √y / √y`, 0 ≤ y ≤ (π/2)²", sine_over_angle, QUARTER, 8, 4),
+    ("COSINE", "`cos √y`, 0 ≤ y ≤ (π/2)²", cosine, QUARTER, 8, 5),
+    ("ARC_TANGENT", "`atan √y / √y`, 0 ≤ y ≤ tan²(π/8)", arc_tangent, EIGHTH_TANGENT, 12, None),
+    ("MIDDLE_RATE", "`θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u ≤ 1", middle_rate, mp.mpf(1), 5, None),
 ]
 
 # name, what it is, function, degree above and below for f64 and f32.
 QUOTIENTS = [
+    ("SQUARE_OVER_REST", "`θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1", square_over_rest, 6, 3),
     ("ANGLE_OVER_SINE", "`θ/sin θ` of `d = cos θ`, 0 ≤ d ≤ 1", angle_over_sine, 6, 3),
 ]
 
@@ -112,19 +109,18 @@ lines = [
     "use super::real::Quotient;",
     "",
 ]
-for name, meaning, function, *ranges in FITS:
+for name, meaning, function, end, *degrees in FITS:
     at_zero = function(mp.mpf(0))
-    for kind, range_and_degree in zip(("f64", "f32"), ranges):
-        if range_and_degree is None:
+    for kind, degree in zip(("f64", "f32"), degrees):
+        if degree is None:
             continue
-        end, degree = range_and_degree
         # Chebyshev fit of (f(y) − f(0))/y; near 0 its series by a tiny step, which 60 digits can bear.
         step = mp.mpf(10) ** -20
         rest = lambda y: (function(max(y, step)) - at_zero) / max(y, step)
         factors, error = mp.chebyfit(rest, [mp.mpf(0), end * HAIR], degree, error=True)
         print(f"{name} {kind}: degree {degree}, error {mp.nstr(error * end, 3)}")
         rising = [at_zero, *reversed(factors)]
-        lines.append(f"/// {meaning} ≤ {mp.nstr(end, 4)}: factors of rising powers.")
+        lines.append(f"/// {meaning}: factors of rising powers.")
         lines.append(f"pub(super) const {name}_{kind.upper()}: [{kind}; {degree + 1}] = [")
         lines.extend(f"    {text(kind, factor)}," for factor in rising)
         lines.append("];")

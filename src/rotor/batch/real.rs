@@ -27,31 +27,27 @@ pub trait Polynomials:
     const ONE: Self;
     const HALF: Self;
     const TWO: Self;
-    /// Whether sines and cosines up to 90° are put together from those up to 45°. Of `f64` that saves a fifth of the work; of
-    /// `f32`, whose polynomials are short anyway, it would cost roundings that there are none to spare of.
-    const FROM_QUARTERS: bool;
     fn size(self) -> Self;
     fn root(self) -> Self;
     fn widened(self) -> f64;
     fn narrowed(value: f64) -> Self;
-    /// `θ/(2 sin θ/2)`, the arc over its chord, of `2 − 2 cos θ/2`, 0 to 2 − √2.
-    fn arc_over_chord(self) -> Self;
+    /// Numerator and denominator of `θ²/(1 − d)` of `d = cos θ`, 0 to 1.
+    fn square_over_rest(self) -> (Self, Self);
     /// Numerator and denominator of `θ/sin θ` of `d = cos θ`, 0 to 1.
     fn angle_over_sine(self) -> (Self, Self);
-    /// `sin √y/√y`, 0 to (π/4)² where [`Self::FROM_QUARTERS`], else to (π/2)².
+    /// `sin √y/√y`, 0 to (π/2)².
     fn sine_over_angle(self) -> Self;
-    /// `cos √y`, in the same range.
+    /// `cos √y`, 0 to (π/2)².
     fn cosine(self) -> Self;
 }
 
 macro_rules! polynomials {
-    ($kind:ty, $narrow:expr, $quarters:literal, $arc:ident, $angle:ident, $sine:ident, $cosine:ident) => {
+    ($kind:ty, $narrow:expr, $square:ident, $angle:ident, $sine:ident, $cosine:ident) => {
         impl Polynomials for $kind {
             const ZERO: Self = 0.0;
             const ONE: Self = 1.0;
             const HALF: Self = 0.5;
             const TWO: Self = 2.0;
-            const FROM_QUARTERS: bool = $quarters;
             #[inline(always)]
             fn size(self) -> Self {
                 self.abs()
@@ -69,8 +65,8 @@ macro_rules! polynomials {
                 ($narrow)(value)
             }
             #[inline(always)]
-            fn arc_over_chord(self) -> Self {
-                polynomial(&fitted::$arc, self)
+            fn square_over_rest(self) -> (Self, Self) {
+                fitted::$square.at(self)
             }
             #[inline(always)]
             fn angle_over_sine(self) -> (Self, Self) {
@@ -91,8 +87,7 @@ macro_rules! polynomials {
 polynomials!(
     f32,
     |value: f64| value as f32,
-    false,
-    ARC_OVER_CHORD_F32,
+    SQUARE_OVER_REST_F32,
     ANGLE_OVER_SINE_F32,
     SINE_OVER_ANGLE_F32,
     COSINE_F32
@@ -100,8 +95,7 @@ polynomials!(
 polynomials!(
     f64,
     std::convert::identity,
-    true,
-    ARC_OVER_CHORD_F64,
+    SQUARE_OVER_REST_F64,
     ANGLE_OVER_SINE_F64,
     SINE_OVER_ANGLE_F64,
     COSINE_F64

@@ -19,8 +19,8 @@ const SQUAD_ROWS: usize = 512;
 /// `t` is a share of the way, 0 to 1. Unlike there the ends are met within that error and not exactly. The rotors are to be
 /// unit within rounding; so is the result.
 ///
-/// With `θ` half the turn everything comes from `|a + b| = 2 cos θ/2` and from how much longer the arc is than its chord,
-/// `θ/(2 sin θ/2)`, which is a polynomial in `2 − |a + b|` without a hard place between 0 and 180°.
+/// With `θ` half the turn and `u = 1 − cos θ`, `θ²/u` is a polynomial in `u`, and `θ/sin θ` and `sin(tθ)/(tθ)` follow from it
+/// without a hard place between 0 and 180°.
 ///
 /// # Panics
 /// When the streams differ in length.
@@ -34,7 +34,7 @@ pub fn slerp<F: Real>(
     level.run(
         #[inline(always)]
         || {
-            let mut desk = [[F::ZERO; SLERP_ROWS]; 6];
+            let mut desk = [[F::ZERO; SLERP_ROWS]; 7];
             each_block(
                 joined(a, b, t),
                 out,
@@ -147,7 +147,7 @@ pub fn squad<F: Real>(
 #[inline(always)]
 fn squad_blocks<F: Real, const ROWS: usize>(streams: Parts<'_, F, 17>, out: PartsMut<'_, F, 4>) {
     let zero = [F::ZERO; ROWS];
-    let (mut ends, mut more, mut desk) = ([[zero; 4]; 2], [zero; 2], [[F::ZERO; SLERP_ROWS]; 6]);
+    let (mut ends, mut more, mut desk) = ([[zero; 4]; 2], [zero; 2], [[F::ZERO; SLERP_ROWS]; 7]);
     each_block(
         streams,
         out,
@@ -218,7 +218,7 @@ fn lower<F: Real>(guards: &mut Column<F, SLERP_ROWS>, other: &Column<F, SLERP_RO
 }
 
 /// Where the stages of a block lie. The first column is the dot products as signed.
-type Desk<F> = [Column<F, SLERP_ROWS>; 6];
+type Desk<F> = [Column<F, SLERP_ROWS>; 7];
 
 /// Slerp of a block.
 ///
@@ -230,87 +230,39 @@ fn short_way<F: Real>(
     b: [&Column<F, SLERP_ROWS>; 4],
     t: &Column<F, SLERP_ROWS>,
     out: [&mut Column<F, SLERP_ROWS>; 4],
-    desk: &mut Desk<F>,
+    [dots, above, below, squares, stretches, from, to]: &mut Desk<F>,
 ) {
-    let [dots, sums, arcs, squares, from, to] = desk;
     for row in 0..SLERP_ROWS {
         dots[row] =
             a[0][row] * b[0][row] + a[1][row] * b[1][row] + a[2][row] * b[2][row] + a[3][row] * b[3][row];
     }
     for row in 0..SLERP_ROWS {
-        sums[row] = (F::TWO + F::TWO * dots[row].size()).root();
+        (above[row], below[row]) = dots[row].size().square_over_rest();
+    }
+    // θ² and (θ/sin θ)².
+    for row in 0..SLERP_ROWS {
+        let cosine = dots[row].size();
+        let shared = above[row] / (below[row] * (F::ONE + cosine));
+        stretches[row] = shared;
+        squares[row] = shared * (F::ONE + cosine) * (F::ONE - cosine);
     }
     for row in 0..SLERP_ROWS {
-        arcs[row] = (F::TWO - sums[row]).arc_over_chord();
-    }
-    if F::FROM_QUARTERS {
-        from_middle(dots, sums, t, arcs, squares, [from, to]);
-    } else {
-        from_ends(dots, sums, t, arcs, squares, [from, to]);
+        let back = F::ONE - t[row];
+        from[row] = back * (back * back * squares[row]).sine_over_angle();
+        stretches[row] = stretches[row].root();
     }
     for row in 0..SLERP_ROWS {
-        to[row] = if dots[row] < F::ZERO { -to[row] } else { to[row] };
+        to[row] = t[row] * (t[row] * t[row] * squares[row]).sine_over_angle();
+    }
+    for row in 0..SLERP_ROWS {
+        let stretch = stretches[row];
+        from[row] = from[row] * stretch;
+        to[row] = to[row] * if dots[row] < F::ZERO { -stretch } else { stretch };
     }
     for part in 0..4 {
         for row in 0..SLERP_ROWS {
             out[part][row] = a[part][row] * from[row] + b[part][row] * to[row];
         }
-    }
-}
-
-/// The weights of both ends by the middle of the arc: least work.
-///
-/// Sum and difference of two unit rotors stand at right angles, and the arc lies in their plane. So with `φ = (t − ½)θ` it is
-/// `(a + b) cos φ/(2 cos θ/2) + (b − a) sin φ/(2 sin θ/2)`, where `φ` is at most 45° and short polynomials are enough.
-#[inline(always)]
-fn from_middle<F: Real>(
-    dots: &Column<F, SLERP_ROWS>,
-    sums: &Column<F, SLERP_ROWS>,
-    t: &Column<F, SLERP_ROWS>,
-    arcs: &Column<F, SLERP_ROWS>,
-    squares: &mut Column<F, SLERP_ROWS>,
-    [from, to]: [&mut Column<F, SLERP_ROWS>; 2],
-) {
-    for row in 0..SLERP_ROWS {
-        let beyond = (t[row] - F::HALF) * arcs[row];
-        to[row] = beyond;
-        squares[row] = beyond * beyond * (F::TWO - F::TWO * dots[row].size());
-    }
-    for row in 0..SLERP_ROWS {
-        from[row] = squares[row].cosine() / sums[row];
-    }
-    for row in 0..SLERP_ROWS {
-        to[row] = to[row] * squares[row].sine_over_angle();
-    }
-    for row in 0..SLERP_ROWS {
-        let (along, across) = (from[row], to[row]);
-        from[row] = along - across;
-        to[row] = along + across;
-    }
-}
-
-/// The weights of both ends, each by itself, `sin (1 − t)θ/sin θ` and `sin tθ/sin θ`: least roundings, as most of them are the
-/// same for both and only change the length.
-#[inline(always)]
-fn from_ends<F: Real>(
-    dots: &Column<F, SLERP_ROWS>,
-    sums: &Column<F, SLERP_ROWS>,
-    t: &Column<F, SLERP_ROWS>,
-    arcs: &mut Column<F, SLERP_ROWS>,
-    squares: &mut Column<F, SLERP_ROWS>,
-    [from, to]: [&mut Column<F, SLERP_ROWS>; 2],
-) {
-    // θ² and θ/sin θ.
-    for row in 0..SLERP_ROWS {
-        squares[row] = arcs[row] * arcs[row] * (F::TWO - F::TWO * dots[row].size());
-        arcs[row] = F::TWO * arcs[row] / sums[row];
-    }
-    for row in 0..SLERP_ROWS {
-        let back = F::ONE - t[row];
-        from[row] = back * (back * back * squares[row]).sine_over_angle() * arcs[row];
-    }
-    for row in 0..SLERP_ROWS {
-        to[row] = t[row] * (t[row] * t[row] * squares[row]).sine_over_angle() * arcs[row];
     }
 }
 

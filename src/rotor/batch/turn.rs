@@ -28,9 +28,10 @@ pub fn turns<F: Real>(level: Level, a: Parts<'_, F, 4>, b: Parts<'_, F, 4>, out:
                         apart = apart + difference * difference;
                         sum = sum + both * both;
                     }
-                    // R and −R are one rotation. What lies between the nearer two is the chord, and their sum stands across it.
-                    let (chord, sum) = if sum < apart { (sum, apart) } else { (apart, sum) };
-                    [F::TWO * chord.root() * (F::TWO - sum.root()).arc_over_chord()]
+                    // R and −R are one rotation. Half the square of the distance is 1 − cos of half the turn.
+                    let rest = F::HALF * if sum < apart { sum } else { apart };
+                    let (above, below) = (F::ONE - rest).square_over_rest();
+                    [F::TWO * (rest * above / below).root()]
                 },
             );
         },
