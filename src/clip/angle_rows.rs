@@ -229,7 +229,7 @@ fn signs_near(level: Level, rotors: Parts<'_, f64, 4>, before: &mut Before, sign
     dots[0] = rotor_at(rotors, 0).dot(before.0);
     let mut is_minus = before.1 < 0.0;
     for (sign, &dot) in signs.iter_mut().zip(&dots) {
-        // A dot product of 0 gives a plus. Both are asked, so that nothing is left to guess.
+        // A dot product of 0 gives a plus. A choice between two comparisons, which needs no branch: random signs could not be guessed.
         is_minus = if is_minus { dot > 0.0 } else { dot < 0.0 };
         *sign = if is_minus { -1.0 } else { 1.0 };
     }
