@@ -56,7 +56,7 @@ fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&m
     });
 }
 
-/// The plane angles in radians of the short turns of unit rotors, row by row: [`Rotor::plane_angles`] within 1e-15 rad
+/// The plane angles in radians of the short turns of unit rotors, row by row: [`Rotor::plane_angles`] within 1.5e-15 rad
 /// (`f32`: 5e-7 rad, which is two units in the last place of π).
 ///
 /// # Panics
