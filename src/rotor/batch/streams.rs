@@ -14,15 +14,15 @@ pub struct Streams<F, const N: usize> {
     stride: usize,
 }
 
-/// Numbers left free between two streams. Streams that begin at the same place of a memory page drive each other out of the
-/// first cache; a few cache lines between them prevent that.
-const GAP: usize = 48;
+/// Bytes left free between two streams. Streams that begin at the same place of a memory page drive each other out of the first
+/// cache, and a read waits for a write a page apart; eleven cache lines between them prevent both.
+const GAP: usize = 704;
 
 impl<F: Copy + Default, const N: usize> Streams<F, N> {
     /// Streams full of zeros.
     #[must_use]
     pub fn zeros(len: usize) -> Self {
-        let stride = len + GAP;
+        let stride = len + GAP / size_of::<F>().max(1);
         Self { numbers: vec![F::default(); stride * N], len, stride }
     }
 
