@@ -940,14 +940,15 @@ fn limits_shade_what_a_number_may_not_reach_while_the_others_stay() {
     assert!(desk.bench.0.render().unwrap() != plain, "the bands are drawn");
     let room = |desk: &Desk<'_>, line: usize| {
         let bench = desk.window().bench();
-        limit_room(&RoomKey {
+        let key = RoomKey {
             set: bench.curve_sets()[0].clone(),
             clip: bench.result().unwrap().clone(),
             limit,
             line,
             window: TimeWindow { start_secs: 0.0, end_secs: 2.0 },
             columns: 5,
-        })
+        };
+        limit_room(&key, None).rooms
     };
     let check = |found: Option<[f64; 2]>, expected: [f64; 2]| {
         let found = found.expect("some of its values are inside");
@@ -964,6 +965,27 @@ fn limits_shade_what_a_number_may_not_reach_while_the_others_stay() {
     for line in [1, 2] {
         check(room(&desk, line)[0], [-half, half]);
     }
+    // A dragged key changes the numbers about it: there the room is looked for anew, elsewhere what was known is taken over.
+    let key = |desk: &Desk<'_>| {
+        let bench = desk.window().bench();
+        RoomKey {
+            set: bench.curve_sets()[0].clone(),
+            clip: bench.result().unwrap().clone(),
+            limit,
+            line: 1,
+            window: TimeWindow { start_secs: 0.0, end_secs: 2.0 },
+            columns: 41,
+        }
+    };
+    let first = key(&desk);
+    let before = limit_room(&first, None);
+    let (at, down) = (desk.pip(ARM, 1.0, "yz"), desk.scale().y * -20.0);
+    desk.drag(at, vec2(0.0, down), Modifiers::NONE, |_| {});
+    let second = key(&desk);
+    let renewed = limit_room(&second, Some((&first, &before)));
+    assert_eq!(renewed.rooms, limit_room(&second, None).rooms);
+    assert_eq!(renewed.rooms[..10], before.rooms[..10], "before 0.5 s nothing moved");
+    assert_ne!(renewed.rooms[20], before.rooms[20], "at 40° the arm had no room, at 20° it has");
     // In numbers that mean no angle, and in rates, there is no band to draw.
     for view in [Action::FileNumbers, Action::TurnRate] {
         desk.ask(Command::Do(view));

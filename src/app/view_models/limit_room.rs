@@ -42,6 +42,23 @@ impl PartialEq for RoomKey {
 /// `None` where no value of it brings the joint inside its limit.
 pub type Room = Option<[f64; 2]>;
 
+/// The room of a number at moments across a stretch of time.
+#[derive(Clone, Debug)]
+pub struct Rooms {
+    /// At each moment; empty in a view whose numbers can't be moved alone, and where swing and twist have levels of their own.
+    pub rooms: Vec<Room>,
+    /// What they hang on beside limit and line: how the joint is measured, and its numbers at each moment.
+    measure: Measure,
+    numbers: Vec<Option<[f64; 3]>>,
+}
+
+impl Rooms {
+    /// The room at a moment, where nothing that it hangs on is another.
+    fn known(&self, column: usize, numbers: Option<[f64; 3]>) -> Option<Room> {
+        (*self.numbers.get(column)? == numbers).then(|| self.rooms.get(column).copied()).flatten()
+    }
+}
+
 /// So far apart it is first looked where the joint is inside its limit, degrees: limits are wider.
 const STEP_DEG: f64 = 5.0;
 /// So far it is looked to either side: half a turn.
@@ -49,26 +66,35 @@ const FARTHEST_DEG: f64 = 180.0;
 /// So often a step is halved: edges are right within 0.04°, less than a pixel.
 const HALVINGS: u32 = 7;
 
-/// The room of a number at each moment across a stretch of time; empty in a view whose numbers can't be moved alone, and where swing and
-/// twist have levels of their own.
-pub fn limit_room(key: &RoomKey) -> Vec<Room> {
+/// The room of a number at each moment across a stretch of time. While a key is dragged most moments keep their numbers, and so the room
+/// that they had `before`.
+pub fn limit_room(key: &RoomKey, before: Option<(&RoomKey, &Rooms)>) -> Rooms {
     let measure = Measure::new(&key.clip, key.set.joint, key.set.view, Some(key.limit));
-    let last = key.columns.max(2) - 1;
-    let moment = |column: usize| key.window.time(column as f64 / last as f64);
-    let room = |column: usize| {
-        let numbers = key.set.shown_at(moment(column))?;
+    let before = before
+        .filter(|(last, rooms)| last.limit == key.limit && last.line == key.line && rooms.measure == measure)
+        .map(|(_, rooms)| rooms);
+    if measure.turn_of([0.0; 3]).is_none() {
+        return Rooms { rooms: Vec::new(), measure, numbers: Vec::new() };
+    }
+    let line = key.line.min(2);
+    let look_for = |numbers: [f64; 3]| {
         let is_inside = |value: f64| {
             let mut numbers = numbers;
-            numbers[key.line.min(2)] = value;
+            numbers[line] = value;
             let turn = measure.turn_of(numbers)?;
             Some(key.limit.limit.contains(&key.limit.read(turn, None)))
         };
-        room_about(numbers[key.line.min(2)], &is_inside)
+        room_about(numbers[line], &is_inside)
     };
-    if measure.turn_of([0.0; 3]).is_none() {
-        return Vec::new();
-    }
-    (0..=last).map(room).collect()
+    let last = key.columns.max(2) - 1;
+    let numbers: Vec<_> =
+        (0..=last).map(|column| key.set.shown_at(key.window.time(column as f64 / last as f64))).collect();
+    let room = |(column, &numbers): (usize, &Option<[f64; 3]>)| {
+        let known = before.and_then(|before| before.known(column, numbers));
+        known.unwrap_or_else(|| look_for(numbers?))
+    };
+    let rooms = numbers.iter().enumerate().map(room).collect();
+    Rooms { rooms, measure, numbers }
 }
 
 /// The stretch of values inside that lies about `own`, or nearest to it.
