@@ -10,7 +10,7 @@ use super::curves::CurveView;
 use super::sampled::limb_direction;
 
 /// How a joint is measured in a view.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, PartialEq)]
 pub struct Measure {
     /// Which view.
     pub view: CurveView,
@@ -24,7 +24,7 @@ pub struct Measure {
 }
 
 /// What the file stores for a key.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, PartialEq)]
 enum Form {
     Rotors,
     PlaneAngles,

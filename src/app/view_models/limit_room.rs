@@ -49,26 +49,65 @@ const FARTHEST_DEG: f64 = 180.0;
 /// So often a step is halved: edges are right within 0.04°, less than a pixel.
 const HALVINGS: u32 = 7;
 
-/// The room of a number at each moment across a stretch of time; empty in a view whose numbers can't be moved alone, and where swing and
-/// twist have levels of their own.
-pub fn limit_room(key: &RoomKey) -> Vec<Room> {
-    let measure = Measure::new(&key.clip, key.set.joint, key.set.view, Some(key.limit));
-    let last = key.columns.max(2) - 1;
-    let moment = |column: usize| key.window.time(column as f64 / last as f64);
-    let room = |column: usize| {
-        let numbers = key.set.shown_at(moment(column))?;
-        let is_inside = |value: f64| {
-            let mut numbers = numbers;
-            numbers[key.line.min(2)] = value;
-            let turn = measure.turn_of(numbers)?;
-            Some(key.limit.limit.contains(&key.limit.read(turn, None)))
-        };
-        room_about(numbers[key.line.min(2)], &is_inside)
-    };
-    if measure.turn_of([0.0; 3]).is_none() {
-        return Vec::new();
+/// Rooms as they were worked out last. Where the numbers of a moment have stayed to the last digit, so has the room: while a key is
+/// dragged or a chart is played, few moments are worked out anew.
+#[derive(Debug, Default)]
+pub struct LimitRooms {
+    last: Option<(RoomKey, Measure)>,
+    /// The numbers at each moment; `None` in a gap.
+    numbers: Vec<Option<[f64; 3]>>,
+    rooms: Vec<Room>,
+    /// So many of them were worked out for the last key.
+    worked_out: usize,
+}
+
+impl LimitRooms {
+    /// The room of a number at each moment across a stretch of time; empty in a view whose numbers can't be moved alone, and where
+    /// swing and twist have levels of their own.
+    pub fn of(&mut self, key: RoomKey) -> &[Room] {
+        if self.last.as_ref().is_some_and(|(last, _)| *last == key) {
+            return &self.rooms;
+        }
+        let measure = Measure::new(&key.clip, key.set.joint, key.set.view, Some(key.limit));
+        let is_alike = self.last.as_ref().is_some_and(|(last, known)| {
+            (last.limit, last.line.min(2)) == (key.limit, key.line.min(2)) && *known == measure
+        });
+        if !is_alike {
+            self.numbers.clear();
+            self.rooms.clear();
+        }
+        let can_move = measure.turn_of([0.0; 3]).is_some();
+        let count = if can_move { key.columns.max(2) } else { 0 };
+        self.numbers.resize(count, None);
+        self.rooms.resize(count, None);
+        self.worked_out = 0;
+        for column in 0..count {
+            let numbers = key.set.shown_at(key.window.time(column as f64 / (count - 1) as f64));
+            if numbers != self.numbers[column] {
+                self.rooms[column] = numbers.and_then(|numbers| room_at(&key, &measure, numbers));
+                self.numbers[column] = numbers;
+                self.worked_out += 1;
+            }
+        }
+        self.last = Some((key, measure));
+        &self.rooms
     }
-    (0..=last).map(room).collect()
+
+    /// How many moments had to be worked out for the last key that was another than the one before: what it cost.
+    pub fn worked_out(&self) -> usize {
+        self.worked_out
+    }
+}
+
+/// The room of a number beside the others of one moment.
+fn room_at(key: &RoomKey, measure: &Measure, numbers: [f64; 3]) -> Room {
+    let line = key.line.min(2);
+    let is_inside = |value: f64| {
+        let mut numbers = numbers;
+        numbers[line] = value;
+        Some(key.limit.limit.contains(&key.limit.read(measure.turn_of(numbers)?, None)))
+    };
+    room_about(numbers[line], &is_inside)
 }
 
 /// The stretch of values inside that lies about `own`, or nearest to it.
