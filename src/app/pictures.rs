@@ -13,7 +13,7 @@ use crate::skeleton::LocalPose;
 use super::panels::{CurvePress, DistanceKey};
 use super::session::{Disc, SpaceHabits};
 use super::view_models::{
-    CarryEye, Drag, FaintFigure, FigureView, HandTurns, HeatMap, MapRow, Memo, RoomKey, Rooms, Stage, Swept,
+    CarryEye, Drag, FaintFigure, FigureView, HandTurns, HeatMap, LimitRooms, MapRow, Memo, Stage, Swept,
     TimeWindow, Trail,
 };
 
@@ -218,7 +218,7 @@ pub(crate) struct Pictures {
     /// The press that is held in the turn map began on the mark of a snag.
     pub press_is_on_mark: bool,
     /// How far the curve with the dot may go.
-    pub room: Memo<RoomKey, Rooms>,
+    pub room: LimitRooms,
     /// What a press on the curves has taken hold of.
     pub curve_press: Option<CurvePress>,
     /// The snag table is to bring the chosen snag into view.

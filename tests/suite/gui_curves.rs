@@ -11,12 +11,14 @@ use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use glam::DVec3;
 use turnwright::app::Start;
 use turnwright::app::commands::{Action, Command, CurveAction, CurveCommand, SpaceAction};
-use turnwright::app::view_models::{CurveView, KeyChoice, RoomKey, Stroke, TimeWindow, limit_room, seconds};
-use turnwright::clip::{Clip, FrameGrid, JointTracks, PathKind, RotationTrack, Spacing, Times};
+use turnwright::app::view_models::{CurveView, KeyChoice, LimitRooms, RoomKey, Stroke, TimeWindow, seconds};
+use turnwright::clip::{
+    Clip, FrameGrid, JointTracks, KeyChange, KeyEdit, PathKind, RotationTrack, Spacing, Times,
+};
 use turnwright::exchange::{ClipAddress, disk, gltf};
 use turnwright::limit::{Interval, JointLimit, Limits, Range, SwingLimit};
 use turnwright::rotor::{Bivector, Rotor};
-use turnwright::scene::{Edit, PassStep};
+use turnwright::scene::{Edit, KeysPass, PassStep};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 
 use crate::gui_harness::Bench;
@@ -825,7 +827,7 @@ fn a_stretch_of_rows_is_shaped_on_in_its_own_pass() {
     let passes = desk.passes();
     let [PassStep::Keys(pass)] = passes.as_slice() else { panic!("{passes:?}") };
     let mut turns = pass.edits.iter().filter_map(|edit| match &edit.change {
-        turnwright::clip::KeyChange::Turn(_, turn) => Some(turn.whole()),
+        KeyChange::Turn(_, turn) => Some(turn.whole()),
         _ => None,
     });
     assert_eq!(turns.next_back(), Some(2));
@@ -888,7 +890,7 @@ fn handles_shape_the_spacing_of_a_stretch_of_rows() {
             .edits
             .iter()
             .filter_map(|edit| match edit.change {
-                turnwright::clip::KeyChange::Space(_, spacing) => Some(spacing),
+                KeyChange::Space(_, spacing) => Some(spacing),
                 _ => None,
             })
             .collect();
@@ -900,7 +902,7 @@ fn handles_shape_the_spacing_of_a_stretch_of_rows() {
         // What is drawn while it is dragged is what letting go will give.
         let shown = desk.window().bench().curve_hand.shown.clone().expect("drawn at once");
         let Stroke::Keys(edits) = &shown.stroke else { panic!("{:?}", shown.stroke) };
-        let turnwright::clip::KeyChange::Space(_, spacing) = edits[0].change else { panic!("{edits:?}") };
+        let KeyChange::Space(_, spacing) = edits[0].change else { panic!("{edits:?}") };
         let [local] = shown.locals.as_slice() else { panic!("{:?}", shown.locals.len()) };
         check(desk, Some(local), spacing.points());
     });
@@ -938,18 +940,13 @@ fn limits_shade_what_a_number_may_not_reach_while_the_others_stay() {
     let plain = desk.bench.0.render().unwrap();
     desk.ask(Command::Edit(Edit::SetLimits { work: 0, limits: Some(Arc::new(limits)) }));
     assert!(desk.bench.0.render().unwrap() != plain, "the bands are drawn");
-    let room = |desk: &Desk<'_>, line: usize| {
+    let key = |desk: &Desk<'_>, line: usize, columns: usize| {
         let bench = desk.window().bench();
-        let key = RoomKey {
-            set: bench.curve_sets()[0].clone(),
-            clip: bench.result().unwrap().clone(),
-            limit,
-            line,
-            window: TimeWindow { start_secs: 0.0, end_secs: 2.0 },
-            columns: 5,
-        };
-        limit_room(&key, None).rooms
+        let (set, clip) = (bench.curve_sets()[0].clone(), bench.result().unwrap().clone());
+        let window = TimeWindow { start_secs: 0.0, end_secs: 2.0 };
+        RoomKey { set, clip, limit, line, window, columns }
     };
+    let room = |desk: &Desk<'_>, line: usize| LimitRooms::default().of(key(desk, line, 5)).to_vec();
     let check = |found: Option<[f64; 2]>, expected: [f64; 2]| {
         let found = found.expect("some of its values are inside");
         assert!(
@@ -965,27 +962,19 @@ fn limits_shade_what_a_number_may_not_reach_while_the_others_stay() {
     for line in [1, 2] {
         check(room(&desk, line)[0], [-half, half]);
     }
-    // A dragged key changes the numbers about it: there the room is looked for anew, elsewhere what was known is taken over.
-    let key = |desk: &Desk<'_>| {
-        let bench = desk.window().bench();
-        RoomKey {
-            set: bench.curve_sets()[0].clone(),
-            clip: bench.result().unwrap().clone(),
-            limit,
-            line: 1,
-            window: TimeWindow { start_secs: 0.0, end_secs: 2.0 },
-            columns: 41,
-        }
-    };
-    let first = key(&desk);
-    let before = limit_room(&first, None);
-    let (at, down) = (desk.pip(ARM, 1.0, "yz"), desk.scale().y * -20.0);
-    desk.drag(at, vec2(0.0, down), Modifiers::NONE, |_| {});
-    let second = key(&desk);
-    let renewed = limit_room(&second, Some((&first, &before)));
-    assert_eq!(renewed.rooms, limit_room(&second, None).rooms);
-    assert_eq!(renewed.rooms[..10], before.rooms[..10], "before 0.5 s nothing moved");
-    assert_ne!(renewed.rooms[20], before.rooms[20], "at 40° the arm had no room, at 20° it has");
+    // What was worked out serves again where the numbers have stayed, and nowhere else: here before the last key but one.
+    let mut rooms = LimitRooms::default();
+    rooms.of(key(&desk, 1, 201));
+    assert_eq!(rooms.worked_out(), 201);
+    let turn = Rotor::from_plane_angles(Bivector::from_degrees([10.0, 5.0, 15.0]));
+    let edits = vec![KeyEdit { joint, change: KeyChange::Set(vec![(2.0, turn)]) }];
+    desk.ask(Command::Edit(Edit::AddPass { work: 0, step: KeysPass { edits }.into(), at: 0 }));
+    desk.run();
+    let again = rooms.of(key(&desk, 1, 201)).to_vec();
+    assert!((45..=55).contains(&rooms.worked_out()), "{}", rooms.worked_out());
+    assert_eq!(again, LimitRooms::default().of(key(&desk, 1, 201)));
+    rooms.of(key(&desk, 2, 201));
+    assert_eq!(rooms.worked_out(), 201, "another number has another room");
     // In numbers that mean no angle, and in rates, there is no band to draw.
     for view in [Action::FileNumbers, Action::TurnRate] {
         desk.ask(Command::Do(view));

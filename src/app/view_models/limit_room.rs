@@ -42,23 +42,6 @@ impl PartialEq for RoomKey {
 /// `None` where no value of it brings the joint inside its limit.
 pub type Room = Option<[f64; 2]>;
 
-/// The room of a number at moments across a stretch of time.
-#[derive(Clone, Debug)]
-pub struct Rooms {
-    /// At each moment; empty in a view whose numbers can't be moved alone, and where swing and twist have levels of their own.
-    pub rooms: Vec<Room>,
-    /// What they hang on beside limit and line: how the joint is measured, and its numbers at each moment.
-    measure: Measure,
-    numbers: Vec<Option<[f64; 3]>>,
-}
-
-impl Rooms {
-    /// The room at a moment, where nothing that it hangs on is another.
-    fn known(&self, column: usize, numbers: Option<[f64; 3]>) -> Option<Room> {
-        (*self.numbers.get(column)? == numbers).then(|| self.rooms.get(column).copied()).flatten()
-    }
-}
-
 /// So far apart it is first looked where the joint is inside its limit, degrees: limits are wider.
 const STEP_DEG: f64 = 5.0;
 /// So far it is looked to either side: half a turn.
@@ -66,35 +49,65 @@ const FARTHEST_DEG: f64 = 180.0;
 /// So often a step is halved: edges are right within 0.04°, less than a pixel.
 const HALVINGS: u32 = 7;
 
-/// The room of a number at each moment across a stretch of time. While a key is dragged most moments keep their numbers, and so the room
-/// that they had `before`.
-pub fn limit_room(key: &RoomKey, before: Option<(&RoomKey, &Rooms)>) -> Rooms {
-    let measure = Measure::new(&key.clip, key.set.joint, key.set.view, Some(key.limit));
-    let before = before
-        .filter(|(last, rooms)| last.limit == key.limit && last.line == key.line && rooms.measure == measure)
-        .map(|(_, rooms)| rooms);
-    if measure.turn_of([0.0; 3]).is_none() {
-        return Rooms { rooms: Vec::new(), measure, numbers: Vec::new() };
+/// Rooms as they were worked out last. Where the numbers of a moment have stayed to the last digit, so has the room: while a key is
+/// dragged or a chart is played, few moments are worked out anew.
+#[derive(Debug, Default)]
+pub struct LimitRooms {
+    last: Option<(RoomKey, Measure)>,
+    /// The numbers at each moment; `None` in a gap.
+    numbers: Vec<Option<[f64; 3]>>,
+    rooms: Vec<Room>,
+    /// So many of them were worked out for the last key.
+    worked_out: usize,
+}
+
+impl LimitRooms {
+    /// The room of a number at each moment across a stretch of time; empty in a view whose numbers can't be moved alone, and where
+    /// swing and twist have levels of their own.
+    pub fn of(&mut self, key: RoomKey) -> &[Room] {
+        if self.last.as_ref().is_some_and(|(last, _)| *last == key) {
+            return &self.rooms;
+        }
+        let measure = Measure::new(&key.clip, key.set.joint, key.set.view, Some(key.limit));
+        let is_alike = self.last.as_ref().is_some_and(|(last, known)| {
+            (last.limit, last.line.min(2)) == (key.limit, key.line.min(2)) && *known == measure
+        });
+        if !is_alike {
+            self.numbers.clear();
+            self.rooms.clear();
+        }
+        let can_move = measure.turn_of([0.0; 3]).is_some();
+        let count = if can_move { key.columns.max(2) } else { 0 };
+        self.numbers.resize(count, None);
+        self.rooms.resize(count, None);
+        self.worked_out = 0;
+        for column in 0..count {
+            let numbers = key.set.shown_at(key.window.time(column as f64 / (count - 1) as f64));
+            if numbers != self.numbers[column] {
+                self.rooms[column] = numbers.and_then(|numbers| room_at(&key, &measure, numbers));
+                self.numbers[column] = numbers;
+                self.worked_out += 1;
+            }
+        }
+        self.last = Some((key, measure));
+        &self.rooms
     }
+
+    /// How many moments had to be worked out for the last key that was another than the one before: what it cost.
+    pub fn worked_out(&self) -> usize {
+        self.worked_out
+    }
+}
+
+/// The room of a number beside the others of one moment.
+fn room_at(key: &RoomKey, measure: &Measure, numbers: [f64; 3]) -> Room {
     let line = key.line.min(2);
-    let look_for = |numbers: [f64; 3]| {
-        let is_inside = |value: f64| {
-            let mut numbers = numbers;
-            numbers[line] = value;
-            let turn = measure.turn_of(numbers)?;
-            Some(key.limit.limit.contains(&key.limit.read(turn, None)))
-        };
-        room_about(numbers[line], &is_inside)
+    let is_inside = |value: f64| {
+        let mut numbers = numbers;
+        numbers[line] = value;
+        Some(key.limit.limit.contains(&key.limit.read(measure.turn_of(numbers)?, None)))
     };
-    let last = key.columns.max(2) - 1;
-    let numbers: Vec<_> =
-        (0..=last).map(|column| key.set.shown_at(key.window.time(column as f64 / last as f64))).collect();
-    let room = |(column, &numbers): (usize, &Option<[f64; 3]>)| {
-        let known = before.and_then(|before| before.known(column, numbers));
-        known.unwrap_or_else(|| look_for(numbers?))
-    };
-    let rooms = numbers.iter().enumerate().map(room).collect();
-    Rooms { rooms, measure, numbers }
+    room_about(numbers[line], &is_inside)
 }
 
 /// The stretch of values inside that lies about `own`, or nearest to it.

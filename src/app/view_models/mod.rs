@@ -58,7 +58,7 @@ pub use joint_numbers::{JointNumbers, RotationNumbers, joint_numbers};
 pub use joint_tree::{TreeRow, tree_rows};
 pub use key_choice::KeyChoice;
 pub use key_drag::{Grip, KeyBase, KeyDrag, Stroke, key_at, on_frame, with_more, with_more_pushes};
-pub use limit_room::{Room, RoomKey, Rooms, limit_room};
+pub use limit_room::{LimitRooms, Room, RoomKey};
 pub use local_curves::{LocalCurves, local_curves};
 pub use map_rows::{MapRow, limb_starts, map_rows};
 pub use memo::Memo;

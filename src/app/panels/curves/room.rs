@@ -2,7 +2,7 @@
 
 use egui::{FontId, Painter, Pos2, Rangef, Rect, Shape, Stroke, pos2};
 
-use super::super::super::view_models::{RoomKey, limit_room};
+use super::super::super::view_models::RoomKey;
 use super::super::Scope;
 use super::chart::Chart;
 
@@ -25,7 +25,7 @@ pub(super) fn room_ui(painter: &Painter, chart: &Chart<'_>, scope: &mut Scope<'_
         columns: (chart.plot.width() / APART).ceil().max(2.0) as usize + 1,
     };
     let columns = key.columns;
-    let rooms = &scope.pictures.room.get_or_renew(key, limit_room).rooms;
+    let rooms = scope.pictures.room.of(key);
     let (Some(own), false) = (set.lines.get(line), rooms.is_empty()) else { return };
     let look = scope.look;
     let color = look.curve(own.color);
