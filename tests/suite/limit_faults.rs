@@ -303,8 +303,8 @@ fn check(name: &str, score: &Score, least_recall: f64) {
 fn joints_bent_beyond_the_preset_are_found_and_brought_back() {
     let adult = |_: &Clip, given: &Clip| adult::limits_for(given).ok().map(|own| own.limits);
     let Some(score) = table(&PEOPLE, &adult, 11) else { return };
-    // What is missed are elbows: their axis is read from how they bend in the clip, and the fault takes part in that.
-    check("adult", &score, 0.9);
+    // What is missed are elbows: their axis is read from how they bend in the clip, and in short clips a fault takes part in that.
+    check("adult", &score, 0.94);
 }
 
 /// Limits that were learned from the sound take.

@@ -56,6 +56,7 @@ pub fn limits_for(clip: &Clip) -> Result<AdultLimits, NoAdult> {
     check(&roles)?;
     let first = placed_on(&clip.skeleton, &roles, &BTreeMap::new());
     let times: Vec<f64> = clip.grid.times.iter().collect();
+    let fault = (LONGEST_FAULT_SECS * clip.grid.rate).ceil() as usize;
     let mut turns = BTreeMap::new();
     let mut loose = Vec::new();
     for side in Side::BOTH {
@@ -66,7 +67,7 @@ pub fn limits_for(clip: &Clip) -> Result<AdultLimits, NoAdult> {
             let (Some(upper), Some(lower)) = (roles.joint(upper), roles.joint(lower)) else { continue };
             let Some(track) = clip.rotation(lower).filter(|track| !track.keys.is_empty()) else { continue };
             let Some(limit) = first.limits.get(lower) else { continue };
-            let Some(seen) = hinge_turn(&readings(track, &times, limit)) else { continue };
+            let Some(seen) = hinge_turn(&readings(track, &times, limit), fault) else { continue };
             if seen.is_sure && seen.turn_rad.abs() <= most {
                 turns.insert(upper, seen.turn_rad);
             }
@@ -102,22 +103,53 @@ const MOST_SPREAD_RAD: f64 = 12.0 / 180.0 * std::f64::consts::PI;
 /// An elbow whose axis is seen to wander more than this belongs to a rig that turns the upper arm in the elbow: it is no hinge there.
 const MOST_WANDER_RAD: f64 = 25.0 / 180.0 * std::f64::consts::PI;
 
-/// About which axis a joint bends; `None` where it does not bend enough to tell.
-fn hinge_turn(readings: &[Reading]) -> Option<Hinge> {
-    let mut turns: Vec<f64> = readings
+/// So long a joint may be bent too far by a fault without the axis being read from it.
+const LONGEST_FAULT_SECS: f64 = 1.5;
+
+/// About which axis a joint bends; `None` where it does not bend enough to tell. `frames` is how long a fault may go on.
+fn hinge_turn(readings: &[Reading], frames: usize) -> Option<Hinge> {
+    // Frame and turn of the axis, in time.
+    let shown: Vec<(usize, f64)> = readings
         .iter()
-        .filter(|reading| SHOWN_RAD.contains(&reading.swing[0].hypot(reading.swing[1])))
-        .map(|reading| reading.swing[1].atan2(reading.swing[0]))
+        .enumerate()
+        .filter(|(_, reading)| SHOWN_RAD.contains(&reading.swing[0].hypot(reading.swing[1])))
+        .map(|(frame, reading)| (frame, reading.swing[1].atan2(reading.swing[0])))
         .collect();
-    if turns.len() < LEAST_FRAMES {
+    if shown.len() < LEAST_FRAMES {
         return None;
     }
-    turns.sort_by(f64::total_cmp);
-    let at = |share: f64| turns[((turns.len() - 1) as f64 * share) as usize];
+    let sorted = |turns: &mut dyn Iterator<Item = f64>| {
+        let mut turns: Vec<f64> = turns.collect();
+        turns.sort_by(f64::total_cmp);
+        turns
+    };
+    let at = |turns: &[f64], share: f64| turns[((turns.len() - 1) as f64 * share) as usize];
+    let all = sorted(&mut shown.iter().map(|(_, turn)| *turn));
+    let turn_rad = at(&all, 0.5);
+    let is_wide = |turns: &[f64]| at(turns, 0.98) - at(turns, 0.02) > MOST_WANDER_RAD;
+    // A rig whose elbow wanders does so all along. What is off in one stretch alone may be the very fault that is looked for.
+    let without_worst = || {
+        // Summed up to each frame.
+        let far: Vec<f64> = std::iter::once(0.0)
+            .chain(shown.iter().scan(0.0, |sum, (_, turn)| {
+                *sum += ((turn - turn_rad).abs() - 0.5 * MOST_WANDER_RAD).max(0.0);
+                Some(*sum)
+            }))
+            .collect();
+        let worst = (0..shown.len())
+            .map(|first| {
+                let end = shown.partition_point(|(frame, _)| *frame < shown[first].0 + frames);
+                (first, end, far[end] - far[first])
+            })
+            .max_by(|a, b| a.2.total_cmp(&b.2));
+        let (first, end, _) = worst?;
+        let left = sorted(&mut shown[..first].iter().chain(&shown[end..]).map(|(_, turn)| *turn));
+        (left.len() >= LEAST_FRAMES && 2 * left.len() >= shown.len()).then_some(left)
+    };
     Some(Hinge {
-        turn_rad: at(0.5),
-        is_sure: at(0.75) - at(0.25) <= 2.0 * MOST_SPREAD_RAD,
-        wanders: at(0.98) - at(0.02) > MOST_WANDER_RAD,
+        turn_rad,
+        is_sure: at(&all, 0.75) - at(&all, 0.25) <= 2.0 * MOST_SPREAD_RAD,
+        wanders: is_wide(&all) && without_worst().is_none_or(|left| is_wide(&left)),
     })
 }
 
