@@ -108,6 +108,7 @@ impl Smoother {
 
 #[cfg(test)]
 mod tests {
+    use super::super::regress::log_determinant;
     use super::*;
 
     #[test]
@@ -135,5 +136,26 @@ mod tests {
             let left = weights[i] * (z[i] - numbers[i]) + rough;
             assert!(left.abs() < 1e-8, "row {i}: {left}");
         }
+    }
+
+    #[test]
+    fn its_determinant_is_that_of_the_whole_matrix_over_the_prices() {
+        const COUNT: usize = 9;
+        let weights: [f64; COUNT] = std::array::from_fn(|i| 1.0 + i as f64);
+        let dear: [f64; COUNT] = std::array::from_fn(|i| 0.5 + (i % 4) as f64);
+        let mut whole = Table::zeros(COUNT, COUNT);
+        for (i, weight) in weights.iter().enumerate() {
+            whole.row_mut(i)[i] += weight;
+        }
+        for (start, dear) in dear[..COUNT - 3].iter().enumerate() {
+            let third = [-1.0, 3.0, -3.0, 1.0];
+            for (i, j) in (0..16).map(|at| (at / 4, at % 4)) {
+                whole.row_mut(start + i)[start + j] += dear * third[i] * third[j];
+            }
+        }
+        let prices: f64 = dear[..COUNT - 3].iter().map(|dear| dear.ln()).sum();
+        let truth = log_determinant(&whole).unwrap() - prices;
+        let told = Smoother::new(&weights, &dear).unwrap().log_det();
+        assert!((told - truth).abs() < 1e-10, "{told} {truth}");
     }
 }
