@@ -3,10 +3,10 @@
 //!
 //! Pose = what the other joints tell (linear in their principal directions) + a smooth rest + noise. Both parts are fitted at
 //! once, as Speckman 1988, "Kernel smoothing in partial linear models", J. Royal Statistical Society B 50, with a spline for
-//! the kernel. How smooth the rest is, and how far the others are believed, is tried by leaving out poses of the span in turn
-//! (cross-validation); where the noise runs over some poses, as many together. What did well near a pose weighs most there
-//! (exponential weights, Leung & Barron 2006, "Information theory and mixing least-squares regressions", IEEE Trans. Inf.
-//! Theory 52), so that a quick step keeps its speed and the rest is calm. There is no delay: it looks ahead as far as back.
+//! the kernel. How smooth the rest is, whether it is rougher where the other joints are, and how far these are believed, is
+//! weighed by how likely each choice makes all the poses, trembling and sound, the noise being known: Wahba 1985, "A comparison
+//! of GCV and GML for choosing the smoothing parameter in the generalized spline smoothing problem", Annals of Statistics 13.
+//! The choices are mixed by that likelihood. There is no delay: it looks ahead as far as back.
 
 use crate::clip::Clip;
 use crate::rotor::{Bivector, Rotor, chordal_mean, convolve};
@@ -15,7 +15,7 @@ use super::banded::Smoother;
 use super::draft::Draft;
 use super::others::Others;
 use super::redraw;
-use super::regress::{Table, dot, solve, times};
+use super::regress::{Table, dot, log_determinant, solve, times};
 
 /// What is known of the noise.
 #[derive(Clone, Copy, Debug)]
@@ -35,18 +35,22 @@ const BESIDE_KEYS: usize = 500;
 /// Keys that the choice is made on, at most; of longer spans those around the middle.
 const TRIED_KEYS: usize = 2400;
 
-/// What is tried: up to which frequency the rest may move, in hertz; and how dear the others' weights are, as a share of
-/// their features' mean square; without a share the others are not asked.
-const CUTOFFS_HZ: [f64; 7] = [0.8, 1.4, 2.2, 3.5, 5.5, 8.5, 13.0];
-const SHARES: [Option<f64>; 3] = [None, Some(1e-3), Some(1e-1)];
+/// What is tried: up to which frequency the rest may move, in hertz, each so many times the one before.
+const LOWEST_HZ: f64 = 0.5;
+const HIGHEST_HZ: f64 = 16.0;
+const CUTOFF_RATIO: f64 = 1.35;
 
-/// How near a pose what is left out tells about it, and how many variances of the noise a trial must be worse for a weight
-/// of 1/e.
-const NEAR_SECS: f64 = 0.2;
-const WORSE: f64 = 3.0;
+/// Above this many times the rate of the poses it is faster than they can tell.
+const MOST_OF_RATE: f64 = 0.3;
 
-/// Poses are left out in so many turns.
-const TURNS: usize = 5;
+/// How far the rest's roughness goes along with that of the other joints, as a power.
+const GOING_ALONG: [f64; 3] = [0.0, 0.5, 1.0];
+
+/// The variance that the weights of the others' directions are taken to have, times the joint's mean square over theirs.
+const BELIEFS: [f64; 3] = [0.1, 1.0, 10.0];
+
+/// The roughness of the other joints is what they do over about so long.
+const ROUGH_SECS: f64 = 0.08;
 
 /// The least noise that sound motion is taken to have, and the largest weight that follows for a sound pose.
 const LEAST_QUIET_RAD: f64 = 3e-4;
@@ -104,22 +108,27 @@ fn smoothed(
     let stride = ((to - from) / 300).max(1);
     let sampled: Vec<usize> = (from..to).step_by(stride).collect();
     let others = is_fixed.then(|| Others::new(clip, joint, draft, (first, last), &sampled)).flatten();
-    let features = others.map(|others| {
-        let mut rows = Table::new(others.width());
-        (from..to).for_each(|key| rows.push(&others.at(draft.secs(key))));
-        rows
+    let times: Vec<f64> = (from..to).map(|key| draft.secs(key)).collect();
+    let told = others.map(|others| {
+        let mut features = Table::new(others.width());
+        for secs in &times {
+            features.push(&others.at(*secs));
+        }
+        Told { features, roughness: others.roughness(&times, (ROUGH_SECS / step_secs).max(1.0)) }
     });
-    let weight = (noise.sigma_rad / noise.quiet_rad.max(LEAST_QUIET_RAD)).powi(2).clamp(1.0, MOST_WEIGHT);
+    // Noise that runs over some poses is, to what is slower, white noise of so many times the power.
+    let noise_rad = noise.sigma_rad * (noise.apart_keys.max(1) as f64).sqrt();
+    let weight = (noise_rad / noise.quiet_rad.max(LEAST_QUIET_RAD)).powi(2).clamp(1.0, MOST_WEIGHT);
     let trembles = first - from..last + 1 - from;
     let weights = (0..to - from).map(|i| if trembles.contains(&i) { 1.0 } else { weight }).collect();
-    let mut task = Task { own, features, weights, trembles, step_secs, apart: noise.apart_keys.max(1) };
+    let mut task = Task { own, told, weights, trembles, step_secs, noise_rad };
     let most = MOST_DEVIATIONS * noise.sigma_rad;
     let change_of = |fitted: &Table, i: usize| {
         let row = fitted.row(i);
         let pose = base[i] * Rotor::from_plane_angles(Bivector::new(row[0], row[1], row[2]));
         (poses[i].reverse() * pose).plane_angles()
     };
-    let mut fitted = task.fitted(noise.sigma_rad)?;
+    let mut fitted = task.fitted()?;
     for _ in 0..OUTLIER_ROUNDS {
         let far: Vec<usize> =
             task.trembles.clone().filter(|&i| change_of(&fitted, i).length() > most).collect();
@@ -131,7 +140,7 @@ fn smoothed(
         for i in new {
             task.weights[i] = 0.0;
         }
-        fitted = task.fitted(noise.sigma_rad)?;
+        fitted = task.fitted()?;
     }
     let smoothed = task.trembles.clone().map(|i| {
         let change = change_of(&fitted, i);
@@ -158,20 +167,37 @@ fn base(poses: &[Rotor], step_secs: f64) -> Option<(Vec<Rotor>, bool)> {
     Some((convolve(poses, &kernel).ok()?, false))
 }
 
+/// What is tried.
 #[derive(Clone, Copy, Debug)]
 struct Choice {
     cutoff_hz: f64,
-    share: Option<f64>,
+    /// The power that the others' roughness is taken to.
+    along: f64,
+    /// `None` where the others' directions are not asked.
+    belief: Option<f64>,
+}
+
+/// What the other joints tell at each row.
+struct Told {
+    features: Table,
+    roughness: Vec<f64>,
 }
 
 /// Rows that are to be smoothed.
 struct Task {
     own: Table,
-    features: Option<Table>,
+    told: Option<Told>,
     weights: Vec<f64>,
     trembles: std::ops::Range<usize>,
     step_secs: f64,
-    apart: usize,
+    noise_rad: f64,
+}
+
+/// All rows made smooth by one choice, and the logarithm of how likely it makes them, up to one constant.
+struct Trial {
+    choice: Choice,
+    likely: f64,
+    fit: Table,
 }
 
 impl Task {
@@ -187,7 +213,10 @@ impl Task {
         };
         Self {
             own: part(&self.own),
-            features: self.features.as_ref().map(part),
+            told: self.told.as_ref().map(|told| Told {
+                features: part(&told.features),
+                roughness: told.roughness[from..to].to_vec(),
+            }),
             weights: self.weights[from..to].to_vec(),
             trembles: self.trembles.start.max(from) - from..self.trembles.end.min(to) - from,
             ..*self
@@ -195,108 +224,93 @@ impl Task {
     }
 
     /// All rows made smooth; meaningful where they tremble.
-    fn fitted(&self, noise_rad: f64) -> Option<Table> {
-        let tried = self.around_the_middle(TRIED_KEYS);
-        let trials = tried.trials();
-        if tried.weights.len() < self.weights.len() {
+    fn fitted(&self) -> Option<Table> {
+        if self.weights.len() > TRIED_KEYS {
             // Too long to be tried everywhere: what does best in the middle.
-            let total = |trial: &(Choice, Vec<f64>)| trial.1.iter().sum::<f64>();
-            let best = trials.iter().min_by(|a, b| total(a).total_cmp(&total(b)))?;
-            return self.fit(&self.weights, best.0);
+            let trials = self.around_the_middle(TRIED_KEYS).trials();
+            let best = trials.iter().max_by(|a, b| a.likely.total_cmp(&b.likely))?.choice;
+            let trials = self.smoothed_by(best.cutoff_hz, best.along, &[best.belief])?;
+            return trials.into_iter().next().map(|trial| trial.fit);
         }
-        let near: Vec<Vec<f64>> = trials.iter().map(|trial| self.summed_near(&trial.1)).collect();
-        let fits: Vec<Table> =
-            trials.iter().map(|trial| self.fit(&self.weights, trial.0)).collect::<Option<_>>()?;
-        let mut out = self.own.clone();
-        for key in self.trembles.clone() {
-            let at = |trial: &Vec<f64>| trial[key - self.trembles.start];
-            let least = near.iter().map(at).fold(f64::INFINITY, f64::min);
-            let weights: Vec<f64> = near
-                .iter()
-                .map(|trial| (-(at(trial) - least) / (WORSE * noise_rad * noise_rad)).exp())
-                .collect();
-            let sum: f64 = weights.iter().sum();
-            let row = out.row_mut(key);
-            row.fill(0.0);
-            for (fit, weight) in fits.iter().zip(&weights) {
-                add(row, weight / sum, fit.row(key));
-            }
+        let trials = self.trials();
+        let best = trials.iter().map(|trial| trial.likely).max_by(f64::total_cmp)?;
+        let weights: Vec<f64> = trials.iter().map(|trial| (trial.likely - best).exp()).collect();
+        let sum: f64 = weights.iter().sum();
+        let mut out = Table { width: 3, numbers: vec![0.0; self.own.numbers.len()] };
+        for (trial, weight) in trials.iter().zip(&weights) {
+            add(&mut out.numbers, weight / sum, &trial.fit.numbers);
         }
-        (!fits.is_empty()).then_some(out)
+        Some(out)
     }
 
-    /// Sums of errors, each counted by how near it is, for the rows that tremble.
-    fn summed_near(&self, errors: &[f64]) -> Vec<f64> {
-        let sigma = NEAR_SECS / self.step_secs;
-        let reach = (3.0 * sigma) as usize;
-        let bell: Vec<f64> = (0..=reach).map(|i| (-0.5 * (i as f64 / sigma).powi(2)).exp()).collect();
-        (0..errors.len())
-            .map(|key| {
-                let near = key.saturating_sub(reach)..(key + reach + 1).min(errors.len());
-                near.map(|other| errors[other] * bell[key.abs_diff(other)]).sum()
-            })
-            .collect()
-    }
-
-    /// What is tried, with the squared error at each row that trembles when it is left out.
-    fn trials(&self) -> Vec<(Choice, Vec<f64>)> {
-        // Above this it is faster than the poses can tell.
-        let told = CUTOFFS_HZ.into_iter().filter(|cutoff_hz| cutoff_hz * self.step_secs <= 0.3);
-        told.flat_map(|cutoff_hz| SHARES.map(|share| Choice { cutoff_hz, share }))
-            .filter_map(|choice| Some((choice, self.errors(choice)?)))
-            .collect()
-    }
-
-    fn errors(&self, choice: Choice) -> Option<Vec<f64>> {
-        if choice.share.is_some() && self.features.is_none() {
-            return None;
-        }
-        let mut errors = vec![0.0; self.trembles.len()];
-        for turn in 0..TURNS {
-            let is_out = |i: usize| {
-                self.trembles.contains(&i) && self.weights[i] > 0.0 && i / self.apart % TURNS == turn
-            };
-            let weights: Vec<f64> =
-                self.weights.iter().enumerate().map(|(i, own)| if is_out(i) { 0.0 } else { *own }).collect();
-            let fitted = self.fit(&weights, choice)?;
-            for i in self.trembles.clone().filter(|i| is_out(*i)) {
-                errors[i - self.trembles.start] =
-                    self.own.row(i).iter().zip(fitted.row(i)).map(|(a, b)| (a - b).powi(2)).sum();
-            }
-        }
-        Some(errors)
-    }
-
-    fn fit(&self, weights: &[f64], choice: Choice) -> Option<Table> {
-        // The smoother halves what moves at its cutoff: there its sixth power is as dear as a pose.
-        let turn = std::f64::consts::TAU * choice.cutoff_hz * self.step_secs;
-        let smoother = Smoother::new(weights, turn.powi(-6))?;
-        let (Some(share), Some(features)) = (choice.share, &self.features) else {
-            return Some(smoother.smooth(&self.own));
+    fn trials(&self) -> Vec<Trial> {
+        let highest = HIGHEST_HZ.min(MOST_OF_RATE / self.step_secs);
+        let cutoffs = std::iter::successors(Some(LOWEST_HZ), |hz| Some(hz * CUTOFF_RATIO));
+        let (along, beliefs): (&[f64], Vec<Option<f64>>) = if self.told.is_some() {
+            (&GOING_ALONG, std::iter::once(None).chain(BELIEFS.map(Some)).collect())
+        } else {
+            (&GOING_ALONG[..1], vec![None])
         };
-        let rough = |rows: &Table| minus(rows, &smoother.smooth(rows));
-        let (own_rough, rough_features) = (rough(&self.own), rough(features));
-        let width = features.width;
-        let (mut square, mut right) = (Table::zeros(width, width), Table::zeros(3, width));
-        for (row, weight) in weights.iter().enumerate() {
-            for (i, feature) in features.row(row).iter().enumerate() {
-                let weighed = feature * weight;
-                add(square.row_mut(i), weighed, rough_features.row(row));
-                add(right.row_mut(i), weighed, own_rough.row(row));
+        cutoffs
+            .take_while(|hz| *hz <= highest)
+            .flat_map(|hz| along.iter().map(move |along| (hz, *along)))
+            .filter_map(|(hz, along)| self.smoothed_by(hz, along, &beliefs))
+            .flatten()
+            .filter(|trial| trial.likely.is_finite())
+            .collect()
+    }
+
+    /// A trial for each belief.
+    fn smoothed_by(&self, cutoff_hz: f64, along: f64, beliefs: &[Option<f64>]) -> Option<Vec<Trial>> {
+        // The smoother halves what moves at its cutoff: there its sixth power is as dear as a pose.
+        let dear = (std::f64::consts::TAU * cutoff_hz * self.step_secs).powi(-6);
+        let dear: Vec<f64> = match &self.told {
+            Some(told) => told.roughness.iter().map(|rough| dear * rough.powf(-along)).collect(),
+            None => vec![dear; self.weights.len()],
+        };
+        let smoother = Smoother::new(&self.weights, &dear)?;
+        let smooth = smoother.smooth(&self.own);
+        let rough = minus(&self.own, &smooth);
+        let weighed = |rows: &Table, others: &Table| -> f64 {
+            let each = rows.numbers.chunks_exact(rows.width).zip(others.numbers.chunks_exact(rows.width));
+            each.zip(&self.weights).map(|((a, b), weight)| weight * dot(a, b)).sum()
+        };
+        let energy = weighed(&self.own, &rough);
+        let log_det = smoother.log_det();
+        let likely =
+            |log_det: f64, energy: f64| -0.5 * (3.0 * log_det + energy / (self.noise_rad * self.noise_rad));
+        let told = self.told.as_ref().map(|told| {
+            let features = &told.features;
+            (features, minus(features, &smoother.smooth(features)))
+        });
+        let trial = |belief: Option<f64>| -> Option<Trial> {
+            let choice = Choice { cutoff_hz, along, belief };
+            let (Some(belief), Some((features, rough_features))) = (belief, &told) else {
+                return Some(Trial { choice, likely: likely(log_det, energy), fit: smooth.clone() });
+            };
+            let width = features.width;
+            let (mut square, mut right) = (Table::zeros(width, width), Table::zeros(3, width));
+            for (row, weight) in self.weights.iter().enumerate() {
+                for (i, feature) in features.row(row).iter().enumerate() {
+                    let weighed = feature * weight;
+                    add(square.row_mut(i), weighed, rough_features.row(row));
+                    add(right.row_mut(i), weighed, rough.row(row));
+                }
             }
-        }
-        let mean = (0..width).map(|i| square.row(i)[i]).sum::<f64>() / width as f64;
-        for i in 0..width {
-            square.row_mut(i)[i] += share * mean + 1e-12;
-        }
-        let told_by = solve(&square, &right)?;
-        let mut told = Table::new(3);
-        for row in 0..weights.len() {
-            told.push(&times(features.row(row), &told_by));
-        }
-        let mut fitted = smoother.smooth(&minus(&self.own, &told));
-        fitted.numbers.iter_mut().zip(&told.numbers).for_each(|(own, told)| *own += told);
-        dot(&fitted.numbers, &fitted.numbers).is_finite().then_some(fitted)
+            let mean_square = dot(&self.own.numbers, &self.own.numbers) / 3.0;
+            let variance = belief * mean_square / dot(&features.numbers, &features.numbers);
+            let ridge = self.noise_rad * self.noise_rad / variance;
+            (0..width).for_each(|i| square.row_mut(i)[i] += ridge);
+            let told_by = solve(&square, &right)?;
+            let log_det = log_det + log_determinant(&square)? - width as f64 * ridge.ln();
+            let energy = energy - dot(&right.numbers, &told_by.numbers);
+            let mut fit = smooth.clone();
+            for row in 0..self.weights.len() {
+                add(fit.row_mut(row), 1.0, &times(rough_features.row(row), &told_by));
+            }
+            Some(Trial { choice, likely: likely(log_det, energy), fit })
+        };
+        Some(beliefs.iter().filter_map(|belief| trial(*belief)).collect())
     }
 }
 

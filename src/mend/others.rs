@@ -17,6 +17,9 @@ const SAMPLED: usize = 400;
 /// A joint whose poses spread less than this, in radians, tells nothing.
 const LEAST_SPREAD_RAD: f64 = 2e-3;
 
+/// Nowhere are the other joints told to be so much rougher than usual, or so much calmer.
+const ROUGHER: f64 = 50.0;
+
 /// The other joints of a clip.
 pub(super) struct Others<'a> {
     tracks: Vec<Other<'a>>,
@@ -93,6 +96,45 @@ impl<'a> Others<'a> {
         let mut raw = self.raw(secs);
         raw.iter_mut().zip(&self.mean).for_each(|(own, mean)| *own -= mean);
         (0..self.width()).map(|i| dot(self.directions.row(i), &raw)).collect()
+    }
+
+    /// How rough the joints are at each of some evenly spaced times, beside what each is in the mean over all: the middle one
+    /// of the joints, so that one that trembles itself does not count. Told by third differences near by (a bell of `sigma`
+    /// times).
+    pub(super) fn roughness(&self, times: &[f64], sigma: f64) -> Vec<f64> {
+        let mut raw = Table::new(3 * self.tracks.len());
+        for secs in times {
+            raw.push(&self.raw(*secs));
+        }
+        let count = times.len().saturating_sub(3);
+        let reach = (3.0 * sigma) as usize + 1;
+        let bell: Vec<f64> = (0..=reach).map(|i| (-0.5 * (i as f64 / sigma).powi(2)).exp()).collect();
+        let of_joint = |joint: usize| -> Vec<f64> {
+            let part = |start: usize, axis: usize| {
+                let at = |i: usize| raw.row(start + i)[3 * joint + axis];
+                at(3) - 3.0 * at(2) + 3.0 * at(1) - at(0)
+            };
+            let thirds: Vec<f64> = (0..count)
+                .map(|start| [0, 1, 2].map(|axis| part(start, axis).powi(2)).iter().sum())
+                .collect();
+            let near = |start: usize| {
+                let keys = start.saturating_sub(reach)..(start + reach + 1).min(count);
+                let weight = |key: usize| bell[key.abs_diff(start)];
+                keys.clone().map(|key| weight(key) * thirds[key]).sum::<f64>() / keys.map(weight).sum::<f64>()
+            };
+            let near: Vec<f64> = (0..count).map(near).collect();
+            let mean = near.iter().sum::<f64>() / count.max(1) as f64;
+            near.iter().map(|own| own / mean.max(f64::MIN_POSITIVE)).collect()
+        };
+        let each: Vec<Vec<f64>> = (0..self.tracks.len()).map(of_joint).collect();
+        let middle = |key: usize| {
+            let mut own: Vec<f64> = each.iter().map(|joint| joint[key]).collect();
+            let middle = own.len() / 2;
+            *own.select_nth_unstable_by(middle, f64::total_cmp).1
+        };
+        // The last three times begin no third difference.
+        let told = (0..times.len()).map(|key| if count == 0 { 1.0 } else { middle(key.min(count - 1)) });
+        told.map(|own| own.clamp(1.0 / ROUGHER, ROUGHER)).collect()
     }
 
     fn raw(&self, secs: f64) -> Vec<f64> {

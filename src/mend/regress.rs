@@ -30,10 +30,10 @@ impl Table {
     }
 }
 
-/// Solves `matrix · x = right` for a symmetric positive definite matrix, for each column of `right`. `None` when it is none.
+/// The lower factor of a symmetric positive definite matrix; `None` when it is none.
 ///
 /// Source: the Cholesky factorisation, as in Golub & Van Loan 2013, "Matrix Computations", section 4.2.
-pub(super) fn solve(matrix: &Table, right: &Table) -> Option<Table> {
+fn lower_factor(matrix: &Table) -> Option<Vec<f64>> {
     let n = matrix.width;
     let mut lower = matrix.numbers.clone();
     for j in 0..n {
@@ -50,6 +50,19 @@ pub(super) fn solve(matrix: &Table, right: &Table) -> Option<Table> {
         }
         own[j] = rest.sqrt();
     }
+    Some(lower)
+}
+
+/// The logarithm of the determinant of a symmetric positive definite matrix. `None` when it is none.
+pub(super) fn log_determinant(matrix: &Table) -> Option<f64> {
+    let lower = lower_factor(matrix)?;
+    Some(2.0 * (0..matrix.width).map(|i| lower[i * matrix.width + i].ln()).sum::<f64>())
+}
+
+/// Solves `matrix · x = right` for a symmetric positive definite matrix, for each column of `right`. `None` when it is none.
+pub(super) fn solve(matrix: &Table, right: &Table) -> Option<Table> {
+    let n = matrix.width;
+    let lower = lower_factor(matrix)?;
     let mut x = right.clone();
     let columns = right.width;
     for column in 0..columns {
@@ -204,6 +217,8 @@ mod tests {
     fn a_system_worked_by_hand_is_solved() {
         let matrix = Table { width: 2, numbers: vec![4.0, 2.0, 2.0, 3.0] };
         let x = solve(&matrix, &Table { width: 1, numbers: vec![2.0, 5.0] }).unwrap();
+        let by_hand = matrix.row(0)[0] * matrix.row(1)[1] - matrix.row(0)[1] * matrix.row(1)[0];
+        assert!((log_determinant(&matrix).unwrap() - by_hand.ln()).abs() < 1e-12);
         assert!((x.numbers[0] + 0.5).abs() < 1e-15 && (x.numbers[1] - 2.0).abs() < 1e-15, "{x:?}");
         let saddle = Table { width: 2, numbers: vec![1.0, 2.0, 2.0, 1.0] };
         assert_eq!(solve(&saddle, &Table::zeros(1, 2)), None);
