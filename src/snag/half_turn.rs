@@ -542,6 +542,9 @@ impl<'a> Motion<'a> {
             return "it goes along with a joint above that flips at the same frames".to_owned();
         }
         match (run.first > 0, run.last + 1 < count) {
+            (true, true) if own == 1 && count > 2 => {
+                "the frame between is off, the motion before and after it agrees".to_owned()
+            }
             (true, true) if own * 2 <= count => {
                 format!("the {own} frames between are off, the motion before and after them agrees")
             }
@@ -549,6 +552,9 @@ impl<'a> Motion<'a> {
                 format!(
                     "the {own} frames between are off, though most of the clip: they are entered and left by one turn"
                 )
+            }
+            _ if own == 1 && count > 2 => {
+                format!("of {count} frames this one alone is taken for the wrong side")
             }
             _ if own * 2 <= count => {
                 format!("of {count} frames these {own} are taken for the wrong side, being fewer")

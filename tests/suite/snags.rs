@@ -655,6 +655,15 @@ fn a_flip_says_why_its_side_is_the_wrong_one() {
         "{text}"
     );
     assert!(text.contains("at frame 60 and back at 91; the 31 frames between are off"), "{text}");
+    let of_one = |at: usize| {
+        let keys = flipped(&rotors(240), &[(at, at)], Axis::Y);
+        let broken = clip_of(vec![RotationTrack::from_rotors(even(240), keys)]);
+        only(&all(&broken), SnagKind::HalfTurn, (at, at)).text
+    };
+    let text = of_one(60);
+    assert!(text.contains("at frame 60 and back at 61; the frame between is off"), "{text}");
+    let text = of_one(239);
+    assert!(text.contains("of 240 frames this one alone is taken for the wrong side"), "{text}");
 }
 
 #[test]
