@@ -25,6 +25,9 @@ pub(super) struct Texture {
     options: TextureOptions,
 }
 
+/// Texels that are packed and looked at together.
+const PIECE: usize = 2048;
+
 impl Texture {
     fn new() -> Self {
         Self { width: 1, height: 1, texels: vec![0], is_opaque: false, options: TextureOptions::default() }
@@ -38,8 +41,15 @@ impl Texture {
         self.width = image.width();
         self.height = image.height();
         self.texels.clear();
-        self.texels.extend(image.pixels.iter().map(|color| pixel::pack(*color)));
-        self.is_opaque = self.texels.iter().all(|texel| pixel::is_opaque(*texel));
+        self.texels.reserve(image.pixels.len());
+        self.is_opaque = true;
+        // A piece at a time, so that what was written is looked at while it is near.
+        for piece in image.pixels.chunks(PIECE) {
+            let start = self.texels.len();
+            self.texels.extend(piece.iter().map(|color| pixel::pack(*color)));
+            let all = self.texels[start..].iter().fold(u32::MAX, |all, texel| all & texel);
+            self.is_opaque &= pixel::is_opaque(all);
+        }
     }
 
     /// Writes `image` with its top left corner at `x`, `y`. What lies outside is left away.

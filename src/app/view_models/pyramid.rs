@@ -51,7 +51,8 @@ impl Pyramid {
         self.values.is_empty()
     }
 
-    /// Smallest and largest value of a range, cut to what there is; `None` when it holds no number.
+    /// Smallest and largest value of a range, cut to what there is; `None` when it holds no number. Looks at most at 14 numbers of each
+    /// level, which there are a few of however long the range is.
     pub fn min_max(&self, range: Range<usize>) -> Option<[f32; 2]> {
         let (mut start, mut end) = (range.start, range.end.min(self.values.len()));
         let mut found = NOTHING;
@@ -70,21 +71,6 @@ impl Pyramid {
             level += 1;
         }
         (found[0] <= found[1]).then_some(found)
-    }
-
-    /// As [`Self::min_max`], of a range whose ends are moved outwards by less than a 16th of it: for one of many columns of a
-    /// chart, where that is a fraction of a pixel. Looks at some dozens of numbers, however long the range is.
-    pub fn min_max_about(&self, range: Range<usize>) -> Option<[f32; 2]> {
-        let (mut start, mut end) = (range.start, range.end.min(self.values.len()));
-        if start >= end {
-            return None;
-        }
-        let mut level = 0;
-        while level < self.levels.len() && end - start >= 16 * FACTOR {
-            (start, end) = (start / FACTOR, end.div_ceil(FACTOR));
-            level += 1;
-        }
-        self.scan(level, start..end, NOTHING)
     }
 
     fn scan(&self, level: usize, range: Range<usize>, found: [f32; 2]) -> Option<[f32; 2]> {
@@ -116,22 +102,6 @@ mod tests {
                     .fold(NOTHING, |range, &value| both(range, [value, value]));
                 let expected = (plain[0] <= plain[1]).then_some(plain);
                 assert_eq!(pyramid.min_max(start..end), expected, "{start}..{end}");
-            }
-        }
-        for start in (0..1000).step_by(37) {
-            for end in (start + 1..=1003).step_by(29) {
-                // No value inside is lost, and none from farther off is taken.
-                let (exact, about) = (pyramid.min_max(start..end), pyramid.min_max_about(start..end));
-                let spare = (end - start) / 16;
-                let wide = pyramid.min_max(start.saturating_sub(spare)..end + spare);
-                let holds = |outer: Option<[f32; 2]>, inner: Option<[f32; 2]>| match (outer, inner) {
-                    (Some(outer), Some(inner)) => outer[0] <= inner[0] && outer[1] >= inner[1],
-                    (_, inner) => inner.is_none(),
-                };
-                assert!(
-                    holds(about, exact) && holds(wide, about),
-                    "{start}..{end}: {exact:?} {about:?} {wide:?}"
-                );
             }
         }
         assert_eq!(Pyramid::new(vec![f32::NAN]).min_max(0..1), None);

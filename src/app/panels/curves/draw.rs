@@ -46,7 +46,7 @@ pub(super) fn draw_curve(
         let right = axis.span.min + column as f32 + 1.0;
         let to = (times.place(axis.time(right)).ceil() as usize).clamp(from, last + 1);
         // One sample more, so that neighbouring columns meet.
-        let found = row.min_max_about(from.saturating_sub(1)..to);
+        let found = row.min_max(from.saturating_sub(1)..to);
         spans.push(found.map(|[low, high]| [values.y(high.into()), values.y(low.into())]));
         from = to.max(from);
     }

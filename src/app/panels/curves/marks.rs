@@ -181,9 +181,24 @@ pub(super) fn snag_spans_ui(
     }
 }
 
-/// The name of each curve at its right end: colour alone must not tell them apart.
+/// Names of curves lie at least so far apart, one below another.
+const APART: f32 = 14.0;
+
+/// A name's place on its row, moved to the left until it lies on none of those `taken`.
+fn clear_of(taken: &[Rect], mut plate: Rect) -> Rect {
+    let is_on = |plate: Rect, other: &Rect| {
+        (other.center().y - plate.center().y).abs() < APART - 0.5
+            && other.x_range().intersects(plate.x_range())
+    };
+    while let Some(other) = taken.iter().find(|other| is_on(plate, other)) {
+        plate = plate.translate(vec2(other.left() - 1.0 - plate.right(), 0.0));
+    }
+    plate
+}
+
+/// The name of each curve at its right end: colour alone must not tell them apart. In a chart too low for all of them one below another
+/// they stand side by side.
 pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
-    const APART: f32 = 14.0;
     let several = chart.sets.len() > 1;
     if !several && chart.sets.iter().all(|set| set.lines.len() < 2) {
         return;
@@ -205,6 +220,7 @@ pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
     let rows = chart.values.rows;
     let mut lowest = f32::NEG_INFINITY;
     let count = places.len();
+    let mut taken: Vec<Rect> = Vec::new();
     for (place, (y, words, color)) in places.into_iter().enumerate() {
         // Above its curve, below the name before it, and with room for those still to come.
         let room = rows.max - APART * (count - place) as f32;
@@ -213,9 +229,13 @@ pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
         lowest = y;
         let galley = painter.layout_no_wrap(words, font.clone(), color);
         let at = pos2(chart.axis.span.max - galley.size().x - 4.0, y - galley.size().y / 2.0);
-        let plate = Rect::from_min_size(at, galley.size()).expand2(vec2(3.0, 0.0));
+        let plate = clear_of(&taken, Rect::from_min_size(at, galley.size()).expand2(vec2(3.0, 0.0)));
+        if plate.left() < chart.axis.span.min {
+            continue;
+        }
+        taken.push(plate);
         painter.rect_filled(plate, 3.0, look.background.gamma_multiply(0.85));
-        painter.galley(at, galley, look.text);
+        painter.galley(plate.min + vec2(3.0, 0.0), galley, look.text);
     }
 }
 
@@ -321,4 +341,20 @@ fn before_at(set: &CurveSet, line: &CurveLine, secs: f64) -> Option<f64> {
 
 fn legible(look: &Look, color: usize) -> Color32 {
     if look.palette.is_dark() { look.curve(color) } else { look.text }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn names_on_one_row_stand_side_by_side() {
+        let plate = |x: f32, y: f32| Rect::from_min_size(pos2(x, y), vec2(20.0, 15.0));
+        let mut taken = vec![plate(80.0, 0.0), plate(80.0, 14.0)];
+        // As far below as names lie apart there is room; on the rows of others there is room beside them, one after another.
+        assert_eq!(clear_of(&taken, plate(80.0, 28.0)), plate(80.0, 28.0));
+        assert_eq!(clear_of(&taken, plate(80.0, 20.0)), plate(59.0, 20.0));
+        taken.push(plate(59.0, 20.0));
+        assert_eq!(clear_of(&taken, plate(80.0, 24.0)), plate(38.0, 24.0));
+    }
 }
