@@ -109,6 +109,7 @@ pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
             && let Some(confidence) = judge(&scan, &rough, run, LEAST_PRODUCT)
                 .or_else(|| beside_another(&scan, &rough, run))
                 .or_else(|| alike.stands_alone(run))
+            && !alike.is_repeated(run)
         {
             snags.push(spike(&scan, run, confidence));
             key = end.max(run.last) + 1;

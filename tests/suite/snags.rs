@@ -5,7 +5,7 @@ use std::sync::Arc;
 
 use serde_json::Value;
 use turnwright::clip::{
-    Clip, FileAngles, FrameGrid, JointTracks, PathKind, Paths, RotationTrack, Stored, Times,
+    Clip, FileAngles, FrameGrid, JointTracks, PathKind, Paths, RotationTrack, Stored, Times, resampled,
 };
 use turnwright::exchange::{OpenOptions, open};
 use turnwright::mend::{self, Survey, SurveyOptions};
@@ -501,6 +501,49 @@ fn honest_fast_motion_is_left_alone() {
     }
     println!("{} wrong in {minutes:.1} joint minutes; {untouched} joints untouched", wrong.len());
     assert!(wrong.is_empty(), "{}", wrong.join("\n"));
+}
+
+/// Toes that roll off the ground: nothing for most of a step, and then two or three keys far off.
+fn toes(pushes: usize) -> Vec<Rotor> {
+    let turn = |degrees: f64| EulerOrder::ZXY.to_rotor([0.0, degrees.to_radians(), 0.0]);
+    let mut keys = Vec::new();
+    for push in 0..pushes {
+        // No two are alike to the degree, nor taken at the same moment.
+        let (share, late) = (0.85 + 0.1 * (push % 4) as f64, push % 3);
+        keys.extend((0..18 + late).map(|key| turn(-10.0 + 0.5 * (key as f64).sin())));
+        keys.extend([-17.0, -33.0, -42.0 + 3.0 * late as f64].map(|degrees| turn(degrees * share)));
+    }
+    keys.extend((0..20).map(|_| turn(-10.0)));
+    keys
+}
+
+#[test]
+fn what_a_joint_does_with_each_step_is_no_spike() {
+    let clip = |keys: Vec<Rotor>| clip_of(vec![RotationTrack::from_rotors(even(keys.len()), keys)]);
+    let spikes = |clip: &Clip| -> Vec<(usize, usize)> {
+        let is_spike = |snag: &&Snag| snag.kind == SnagKind::Spike;
+        all(clip).snags.iter().filter(is_spike).map(|snag| (snag.first_frame, snag.last_frame)).collect()
+    };
+    assert_eq!(spikes(&clip(toes(8))), []);
+    // A fault among them goes another way and stays one.
+    let mut keys = toes(8);
+    keys[100] = keys[100] * EulerOrder::ZXY.to_rotor([0.5, 0.0, 0.0]);
+    assert_eq!(spikes(&clip(keys)), [(100, 100)]);
+    // Done once, nothing speaks for it.
+    assert_eq!(spikes(&clip(toes(1))).len(), 1);
+}
+
+#[test]
+fn a_sound_walk_stays_sound_at_lower_rates() {
+    let Some(path) = shared("data/bvh/xyz_affective_walk.bvh") else { return };
+    let clip = &open(&path, &OpenOptions::default()).unwrap().clips[0];
+    let moving = [SnagKind::HalfTurn, SnagKind::Spike, SnagKind::Stuck];
+    for rate in [24.0, 25.0, 30.0, 40.0, 60.0, 90.0, 240.0] {
+        let slower = resampled(clip, rate, 0.0, clip.duration_secs);
+        let told: Vec<_> =
+            all(&slower).snags.into_iter().filter(|snag| moving.contains(&snag.kind)).collect();
+        assert!(told.is_empty(), "at {rate} a second: {told:#?}");
+    }
 }
 
 #[test]

@@ -8,12 +8,12 @@
 use std::cell::OnceCell;
 use std::f64::consts::PI;
 
-use crate::rotor::Rotor;
+use crate::rotor::{Bivector, Rotor};
 
 use super::super::mirror::mirror_of;
 use super::super::roughness::{Roughness, angle_of_dot};
 use super::super::scan::Scan;
-use super::{LEAST_KEYS, LEAST_SPREAD_RAD, Run, STEP_SIZES, comes_back, may_be_spike};
+use super::{LEAST_KEYS, LEAST_SPREAD_RAD, Run, STEP_SIZES, across, comes_back, may_be_spike};
 
 /// With more poses a second a spike is told by itself.
 const FINE_SECS: f64 = 0.02;
@@ -45,6 +45,13 @@ const SWING_ROUGHNESS: f64 = 0.5;
 
 /// Keys beside a run that belong to its shape.
 const BESIDE: usize = 2;
+
+/// A joint moves like that when it does the same so many times more: poses turn against each other by the same angles, within a share
+/// of the roughness (they are taken at other moments of each swing); as rough by a share; and in one plane, by its cosine.
+const LEAST_REPEATS: usize = 3;
+const REPEAT_SHARE: f64 = 0.5;
+const REPEAT_ROUGHNESS: f64 = 0.5;
+const REPEAT_PLANE: f64 = 0.9;
 
 /// How sure it is.
 const CONFIDENCE: f64 = 0.55;
@@ -102,6 +109,40 @@ impl<'a> Alike<'a> {
 }
 
 impl Alike<'_> {
+    /// Whether the joint does the same again and again, as toes do that roll off the ground: at 24 poses a second a push of a tenth
+    /// of a second is two keys far off all others. Faults lie in no one plane and have no one size.
+    pub(super) fn is_repeated(&self, run: Run) -> bool {
+        let rough = self.rough;
+        if !self.is_coarse {
+            return false;
+        }
+        let wanted = Stretch::of(rough, run.first, run.last);
+        let roughest = |keys: std::ops::RangeInclusive<usize>| {
+            keys.max_by(|a, b| rough.residual(*a).total_cmp(&rough.residual(*b)))
+        };
+        let Some(top) = roughest(run.first - 1..=run.last + 1) else { return false };
+        let (mut repeats, mut key) = (0, 1);
+        loop {
+            key = rough.next_rough(key);
+            if key + 1 >= rough.len() || repeats == LEAST_REPEATS {
+                return repeats == LEAST_REPEATS;
+            }
+            let is_other = key + BESIDE < run.first || key > run.last + BESIDE;
+            // Poses are taken at other moments of each push, so it may lie a key off.
+            let is_same = is_other
+                && rough.residual(key) >= REPEAT_ROUGHNESS * run.peak
+                && [0, 1, 2].into_iter().any(|late| {
+                    let Some(first) = (run.first + key + late).checked_sub(top + 1) else { return false };
+                    let last = first + run.last - run.first;
+                    first >= BESIDE
+                        && last + BESIDE < rough.len()
+                        && Stretch::of(rough, first, last).is_like(&wanted, run.peak)
+                });
+            repeats += usize::from(is_same);
+            key += if is_same { run.last - run.first + BESIDE } else { 1 };
+        }
+    }
+
     /// The largest roughness of the joint, a run and the keys next to it left out.
     fn roughest_beside(&self, run: Run) -> f64 {
         let [before, after] = self.roughest.get_or_init(|| {
@@ -137,6 +178,34 @@ impl<'a> Mirror<'a> {
 fn is_swing(run: Run) -> bool {
     let is_uneven = run.last > run.first && run.weakest < SWING_SHARE * run.size;
     is_uneven && (run.peak < SWING_ROUGHNESS * run.size || run.across > STEP_SIZES * run.size)
+}
+
+/// How a joint moves around a run.
+struct Stretch {
+    shape: Vec<f64>,
+    /// How far each key of the run lies off the way across it.
+    off: Vec<Bivector>,
+}
+
+impl Stretch {
+    fn of(rough: &Roughness<'_>, first: usize, last: usize) -> Self {
+        let keys = first - BESIDE..(last + BESIDE + 1).min(rough.len());
+        let off = |key| (across(rough, first, last, key).reverse() * rough.pose(key)).plane_angles();
+        Self {
+            shape: shape(&keys.map(|key| rough.pose(key)).collect::<Vec<_>>()),
+            off: (first..=last).map(off).collect(),
+        }
+    }
+
+    /// Whether the poses turn against each other by the same angles, as a share of `size_rad`, and lie off in the same planes.
+    fn is_like(&self, other: &Self, size_rad: f64) -> bool {
+        let apart: f64 = self.shape.iter().zip(&other.shape).map(|(a, b)| (a - b).abs()).sum();
+        let sum = |of: &dyn Fn(&Bivector, &Bivector) -> f64| -> f64 {
+            self.off.iter().zip(&other.off).map(|(a, b)| of(a, b)).sum()
+        };
+        let [both, own, its] = [sum(&|a, b| a.dot(*b)), sum(&|a, _| a.dot(*a)), sum(&|_, b| b.dot(*b))];
+        apart < REPEAT_SHARE * size_rad * self.shape.len() as f64 && both > REPEAT_PLANE * (own * its).sqrt()
+    }
 }
 
 /// Whether another joint does what this one does around a run, at any time.
