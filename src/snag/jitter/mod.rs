@@ -47,6 +47,10 @@ const QUIET_SHARE: f64 = 0.3;
 const TIMES_MIRROR: f64 = 1.6;
 const WORST_SHARE: f64 = 0.85;
 
+/// And so many times the middle of the keys beside all such spans: at 24 poses a second the steps of a walk are as rough as noise, but
+/// little rougher than the rest of it.
+const TIMES_BESIDE: f64 = 2.6;
+
 /// A joint that is never quiet is measured by the middle of all joints; without a mirror it must be far above.
 const TIMES_ALL: f64 = 5.0;
 const TIMES_ALL_ALONE: f64 = 7.0;
@@ -94,6 +98,8 @@ pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
                 spans = joined(spans, white::find(&scan, &row, &levels, &loud), &levels);
             }
         }
+        let beside = level_beside(&levels, &spans);
+        spans.retain(|span| span.noise >= TIMES_BESIDE * beside);
         if !spans.is_empty() {
             return spans.into_iter().map(|span| snag(&scan, &levels, span)).collect();
         }
@@ -418,6 +424,18 @@ fn level_of_all(scan: &Scan<'_>, lag: usize) -> f64 {
         })
         .collect();
     if levels.is_empty() { f64::INFINITY } else { middle(&levels) }
+}
+
+/// The middle level of the keys that lie in none of the spans; 0 where most keys do.
+fn level_beside(levels: &Levels<'_>, spans: &[Span]) -> f64 {
+    /// Keys that are looked at.
+    const SAMPLED: usize = 2000;
+    let keys = 2 * levels.lag..levels.len() - 2 * levels.lag;
+    let is_beside = |key: &usize| !spans.iter().any(|span| (span.first..=span.last).contains(key));
+    let stride = (keys.len() / SAMPLED).max(1);
+    let looked_at = keys.len().div_ceil(stride);
+    let beside: Vec<f64> = keys.step_by(stride).filter(is_beside).map(|key| levels.at(key)).collect();
+    if 4 * beside.len() < looked_at { 0.0 } else { middle_of(beside) }
 }
 
 /// The keys of a row of windows that tremble, from the first to the last whose difference shows it.
