@@ -292,6 +292,51 @@ fn the_four_families_of_names() {
     check("B with its connectors", &order);
 }
 
+#[test]
+fn names_in_other_languages() {
+    let german = Names {
+        hips: "Becken",
+        trunk: &["Wirbelsäule", "Brust"],
+        neck: &["Hals"],
+        head: "Kopf",
+        arm: ["{}Schulter", "{}Oberarm", "{}Unterarm", "{}Hand"],
+        leg: ["{}Oberschenkel", "{}Unterschenkel", "{}Fuß", "{}Zehen"],
+        sides: ["Links", "Rechts"],
+    };
+    let french = Names {
+        hips: "Bassin",
+        trunk: &["Colonne", "Poitrine"],
+        neck: &["Cou"],
+        head: "Tête",
+        arm: ["Epaule_{}", "Bras_{}", "Avant-bras_{}", "Poignet_{}"],
+        leg: ["Cuisse_{}", "Mollet_{}", "Pied_{}", "Orteils_{}"],
+        sides: ["Gauche", "Droite"],
+    };
+    let spanish = Names {
+        hips: "Cadera",
+        trunk: &["Columna", "Pecho"],
+        neck: &["Cuello"],
+        head: "Cabeza",
+        arm: ["Hombro {}", "Brazo {}", "Antebrazo {}", "Mano {}"],
+        leg: ["Muslo {}", "Pantorrilla {}", "Pie {}", "Dedos {}"],
+        sides: ["Izquierda", "Derecha"],
+    };
+    let italian = Names {
+        hips: "bacino",
+        trunk: &["colonna", "petto"],
+        neck: &["collo"],
+        head: "testa",
+        arm: ["spalla_{}", "braccio_{}", "avambraccio_{}", "mano_{}"],
+        leg: ["coscia_{}", "polpaccio_{}", "piede_{}", "dita_{}"],
+        sides: ["sinistra", "destra"],
+    };
+    for (case, names) in [("German", german), ("French", french), ("Spanish", spanish), ("Italian", italian)]
+    {
+        let roles = check_least(case, &person(&names), 0.5);
+        assert!(roles.is_human() && roles.doubts.is_empty(), "{case}: {:?}", roles.doubts);
+    }
+}
+
 /// The same figure with parents before children.
 fn sorted(build: &Build) -> Build {
     let depth = |joint: usize| std::iter::successors(build.parents[joint], |&up| build.parents[up]).count();

@@ -6,6 +6,12 @@ use super::dictionary::{KANA, WORDS, Word};
 use super::name::Name;
 use super::role::Side;
 
+/// What a side is written out as, or begins with.
+const SPELLED_SIDES: [&str; 14] = [
+    "left", "right", "hidari", "migi", "lft", "rgt", "link", "recht", "gauche", "droit", "izquierd",
+    "derech", "sinistr", "destr",
+];
+
 /// Reads the names of joints together: what most begin with, and a number that runs through all, say nothing.
 pub(super) fn read(raw: &[&str]) -> Vec<Name> {
     let plain: Vec<String> = raw.iter().map(|name| plain(name)).collect();
@@ -25,9 +31,7 @@ pub(super) fn read(raw: &[&str]) -> Vec<Name> {
         .collect();
     drop(known);
     for (index, name) in names.iter_mut().enumerate().filter(|&(index, _)| lonely[index]) {
-        let spelled = pieces[index].iter().any(|piece| {
-            ["left", "right", "hidari", "migi", "lft", "rgt"].iter().any(|word| piece.contains(word))
-        });
+        let spelled = pieces[index].iter().any(|piece| SPELLED_SIDES.iter().any(|word| piece.contains(word)));
         if !spelled {
             name.side = None;
         }
