@@ -484,8 +484,8 @@ fn most_error_deg(kind: SnagKind, coarse: bool, slerp: f64, was: f64) -> f64 {
         SnagKind::Spike if coarse => slerp,
         SnagKind::Stuck if coarse => 1.05 * slerp,
         SnagKind::Stuck => 0.65 * slerp,
-        SnagKind::Jitter if coarse => 0.45 * was,
-        SnagKind::Jitter => 0.35 * was,
+        SnagKind::Jitter if coarse => 0.4 * was,
+        SnagKind::Jitter => 0.32 * was,
         _ => 0.3,
     };
     let is_bounded = kind != SnagKind::Jitter && !(coarse && kind == SnagKind::Stuck);

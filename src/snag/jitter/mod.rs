@@ -5,6 +5,7 @@
 //! the two together tell noise from motion, without a word about how fast the joint may be; how much noise is usual is told
 //! by the joint's other times, and by the joint on the other side of the body.
 
+mod ends;
 mod white;
 
 use std::cell::OnceCell;
@@ -100,6 +101,14 @@ pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
         }
         let beside = level_beside(&levels, &spans);
         spans.retain(|span| span.noise >= TIMES_BESIDE * beside);
+        if lag == 1 {
+            for index in 0..spans.len() {
+                // A span ends before the next, and that one behind this.
+                let start = index.checked_sub(1).map_or(0, |before| spans[before].last + 1);
+                let end = spans.get(index + 1).map_or(row.len(), |next| next.first);
+                spans[index] = ends::extended(&row, spans[index], &(start..end));
+            }
+        }
         if !spans.is_empty() {
             return spans.into_iter().map(|span| snag(&scan, &levels, span)).collect();
         }
