@@ -99,8 +99,10 @@ pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
                 spans = joined(spans, white::find(&scan, &row, &levels, &loud), &levels);
             }
         }
-        let beside = level_beside(&levels, &spans);
-        spans.retain(|span| span.noise >= TIMES_BESIDE * beside);
+        if !spans.is_empty() {
+            let beside = level_beside(&levels, &spans);
+            spans.retain(|span| span.noise >= TIMES_BESIDE * beside);
+        }
         if lag == 1 {
             for index in 0..spans.len() {
                 // A span ends before the next, and that one behind this.
