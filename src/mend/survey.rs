@@ -173,7 +173,7 @@ fn wraps_left(clip: &Clip, working: &Clip, found: &[(Snag, f64)]) -> Vec<Snag> {
     let mut runs: Vec<Vec<(usize, usize)>> = vec![Vec::new(); clip.joints.len()];
     for (snag, _) in found.iter().filter(|(snag, _)| snag.remedy != Remedy::Ask) {
         jumped[snag.joint] |= matches!(snag.kind, SnagKind::HalfTurn | SnagKind::Spike);
-        if !snag.kind.keeps_pose() {
+        if !snag.kind.keeps_pose() || snag.kind == SnagKind::MirroredAngles {
             // A run follows the numbers before it, so both must be shifted alike.
             runs[snag.joint].push((snag.first_key.saturating_sub(1), snag.last_key));
         }

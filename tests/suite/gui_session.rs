@@ -26,10 +26,19 @@ struct Session {
     desk: Desk,
     window: String,
     scene: PathBuf,
+    /// The picture that was kept last.
+    kept: RefCell<Vec<[u8; 3]>>,
 }
 
 impl Session {
+    /// Keeps a picture of the stage once the window shows another than the last one kept, and nothing moves any more: titles and saved files
+    /// come before the window is painted.
     fn keep(&self, name: &str) {
+        let another = self.desk.wait("another picture that stands still", || {
+            let own = self.desk.picture();
+            (own != *self.kept.borrow() && own == self.desk.picture()).then_some(own)
+        });
+        self.kept.replace(another);
         self.desk.keep_picture(&pictures().join(format!("{name}.png")));
     }
 
@@ -133,7 +142,8 @@ fn a_captured_dance_is_cleaned_up_from_opening_to_export() {
     let window = desk.window("dance.bvh - Turnwright");
     desk.focus(&window);
     desk.tool(&["windowmove", &window, "0", "0"]);
-    let mut session = Session { desk, window, scene: folder.path().join("dance.ron") };
+    let mut session =
+        Session { desk, window, scene: folder.path().join("dance.ron"), kept: RefCell::default() };
     let desk = &session.desk;
     let snag = |[r, g, b]: [u8; 3]| r > 190 && (70..115).contains(&g) && b < 40;
     let chosen = |[r, g, b]: [u8; 3]| r > 220 && g > 210 && (40..100).contains(&b);
