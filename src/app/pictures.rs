@@ -215,6 +215,10 @@ pub(crate) struct Pictures {
     pub hovered: Option<usize>,
     /// A joint that lists are to bring into view.
     pub scroll_to_joint: Option<usize>,
+    /// How high the rows of the turn map were in the last frame, points.
+    pub map_height: f32,
+    /// The same of the tree of joints.
+    pub tree_height: f32,
     /// The press that is held in the turn map began on the mark of a snag.
     pub press_is_on_mark: bool,
     /// How far the curve with the dot may go.

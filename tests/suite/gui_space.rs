@@ -15,6 +15,7 @@ use turnwright::rotor::Rotor;
 use turnwright::scene::{Edit, PassStep};
 
 use crate::gui_harness::Bench;
+use crate::support::shared;
 
 impl Bench<'_> {
     fn space(&mut self, action: SpaceAction) {
@@ -259,7 +260,7 @@ fn a_tip_is_drawn_to_where_the_pointer_lets_go_and_the_limb_keeps_its_plane() {
 
 #[test]
 fn where_keys_are_sparse_a_turn_sets_a_key_at_the_playhead() {
-    let Some(path) = crate::support::shared("data/gltf/node_character.glb") else { return };
+    let Some(path) = shared("data/gltf/node_character.glb") else { return };
     let address = ClipAddress { path, clip: Some("idle".to_owned()) };
     let mut bench = Bench::open(Start::Files(vec![address]));
     bench.ask(Command::CloseDialog);
@@ -481,4 +482,24 @@ fn handles_are_out_of_the_way_where_they_would_lie() {
     bench.ask(Command::Do(Action::Play));
     bench.ask(Command::ChooseJoint(None));
     assert!(bench.0.query_by_label("Turn disc free").is_none());
+}
+
+/// Files whose figures stand on a root at the floor, hold their arms up, or have joints far out.
+#[test]
+fn all_grips_of_every_joint_lie_within_the_picture() {
+    for name in ["gltf/Fox.glb", "gltf/biped23_movement_clips.glb", "bvh/cmu_05_06_dance.bvh"] {
+        let Some(path) = shared(&format!("data/{name}")) else { return };
+        let mut bench = Bench::of_file(&path);
+        bench.ask(Command::CloseDialog);
+        let picture = bench.0.get_by_label("Skeleton view").rect();
+        let joints: Vec<usize> = bench.result().skeleton.listed().collect();
+        for joint in joints {
+            bench.ask(Command::ChooseJoint(Some(joint)));
+            for disc in ["yz", "zx", "xy", "twist", "free"] {
+                let grip = bench.0.get_by_label(&format!("Turn disc {disc}")).rect().center();
+                let own = bench.result().skeleton.label(joint).to_owned();
+                assert!(picture.contains(grip), "{name}: {disc} of {own} at {grip} in {picture}");
+            }
+        }
+    }
 }

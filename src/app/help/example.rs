@@ -150,7 +150,7 @@ fn faulty(kind: SnagKind) -> (Clip, Option<usize>) {
     match kind {
         SnagKind::BrokenValue => {
             let keys = (0..FRAMES).map(|frame| match frame {
-                58..=61 => Rotor::new(f64::NAN, 0.0, 0.0, 0.0),
+                54..=67 => Rotor::new(f64::NAN, 0.0, 0.0, 0.0),
                 _ => turn(angle(frame), 0.0),
             });
             (clip(RotationTrack::from_rotors(times(), keys.collect::<Vec<_>>())), None)

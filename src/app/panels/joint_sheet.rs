@@ -10,7 +10,7 @@ use super::super::view_models::{
     JointNumbers, RotationNumbers, Shared, SnagState, counted, degrees, degrees_fixed, joint_numbers,
     tree_rows,
 };
-use super::super::widgets::{Icon, focus_ring, hint, name_ui, paint_icon, strip};
+use super::super::widgets::{Icon, bring_into_view, focus_ring, hint, name_ui, paint_icon, strip};
 use super::{Scope, choose_joint};
 
 const TREE_ROW: f32 = 20.0;
@@ -62,15 +62,17 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     // Deep trees must leave room for the names.
     let deepest = rows.iter().map(|row| row.depth).max().unwrap_or(0);
     let step = (area.width() * 0.3 / deepest.max(1) as f32).min(9.0);
-    let scrolls = scope.pictures.scroll_to_joint;
+    let asked = scope.pictures.scroll_to_joint;
+    let seen_before = std::mem::replace(&mut scope.pictures.tree_height, area.height());
+    let kept = scope.bench.session.joint.filter(|_| area.height() < seen_before);
     ScrollArea::vertical().id_salt("joint tree").auto_shrink(false).show_viewport(ui, |ui, viewport| {
         let top = ui.max_rect().top();
         ui.set_height(TREE_ROW * rows.len() as f32);
-        if scrolls.is_some()
-            && let Some(place) = rows.iter().position(|row| Some(row.joint) == scrolls)
+        if let Some(joint) = asked.or(kept)
+            && let Some(place) = rows.iter().position(|row| row.joint == joint)
         {
-            let y = top + place as f32 * TREE_ROW;
-            ui.scroll_to_rect(Rect::from_min_size(pos2(area.left(), y), vec2(1.0, TREE_ROW)), None);
+            let row = Rangef::new(place as f32, place as f32 + 1.0) * TREE_ROW;
+            bring_into_view(ui, top, row, [viewport.top(), seen_before], asked.is_some());
         }
         let first = (viewport.top() / TREE_ROW).floor().max(0.0) as usize;
         let last = ((viewport.bottom() / TREE_ROW).ceil() as usize).min(rows.len());

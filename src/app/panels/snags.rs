@@ -83,9 +83,21 @@ fn empty_words(scope: &Scope<'_>, total: usize) -> &'static str {
 fn filter_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     /// The fields beside each other take as much.
     const ROOM: f32 = 375.0;
-    search_ui(ui, scope);
-    ui.add_space(6.0);
+    /// Two buttons beside each other take as much; where there is less one menu holds both.
+    const ROOM_FOR_TWO: f32 = 132.0;
     let mut filter = scope.bench.session.filter.clone();
+    if ui.available_width() < ROOM_FOR_TWO {
+        search_ui(ui, scope, |ui, scope| {
+            ui.separator();
+            filter_fields(ui, &mut filter, scope);
+        });
+        if filter != scope.bench.session.filter {
+            scope.out.push(Command::SetFilter(filter));
+        }
+        return;
+    }
+    search_ui(ui, scope, |_, _| {});
+    ui.add_space(6.0);
     if ui.available_width() > ROOM {
         filter_fields(ui, &mut filter, scope);
     } else {
@@ -140,8 +152,12 @@ fn filter_fields(ui: &mut Ui, filter: &mut SnagFilter, scope: &Scope<'_>) {
     response.widget_info(|| WidgetInfo::slider(true, f64::from(shown), "Least size"));
 }
 
-/// What snags are looked for with: limits, the loop's seam, sliding feet. A change looks for them anew and can be undone.
-fn search_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
+/// What is looked for is written out where the strip has so many points free.
+const ROOM_FOR_SEARCH: f32 = 230.0;
+
+/// What snags are looked for with: limits, the loop's seam, sliding feet. A change looks for them anew and can be undone. `more` stands below
+/// in the same menu.
+fn search_ui<'s>(ui: &mut Ui, scope: &mut Scope<'s>, below: impl FnOnce(&mut Ui, &mut Scope<'s>)) {
     let mut more: Vec<String> = scope.now.limits.iter().map(|title| format!("limits {title}")).collect();
     if scope.now.search.is_loop {
         more.push("loop".to_owned());
@@ -149,7 +165,12 @@ fn search_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     if scope.now.search.finds_slides {
         more.push("feet".to_owned());
     }
-    let words = if more.is_empty() { "Search".to_owned() } else { format!("Search: {}", more.join(", ")) };
+    // In a narrow strip what is looked for is told under the pointer alone.
+    let words = match more.as_slice() {
+        [] => "Search".to_owned(),
+        _ if ui.available_width() < ROOM_FOR_SEARCH => "Search…".to_owned(),
+        more => format!("Search: {}", more.join(", ")),
+    };
     let menu = ui.menu_button(elided_words(&words, 30), |ui| {
         ui.set_min_width(240.0);
         for action in [
@@ -166,6 +187,7 @@ fn search_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
             }
             entry_ui(ui, action.entry(), scope.now, &scope.look, scope.out);
         }
+        below(ui, scope);
     });
     menu.response.on_hover_text(format!(
         "What snags are looked for with: {}",

@@ -141,18 +141,21 @@ fn key_marks(painter: &egui::Painter, rail: Rect, clip: &crate::clip::Clip, scop
     }
 }
 
+/// A marker's name is left out where there is less room for it, points.
+const LEAST_NAME: f32 = 12.0;
+
 /// Named moments as flags above the rail: a click jumps there, a drag moves one, a double click renames it.
 fn markers_ui(ui: &Ui, rail: Rect, clip: &crate::clip::Clip, scope: &mut Scope<'_>) {
     let look = scope.look;
     let markers = scope.bench.work().map(|work| work.markers.clone()).unwrap_or_default();
     let duration = clip.duration_secs.max(1e-9);
     let work = scope.bench.session.work;
-    let mut free_from = f32::NEG_INFINITY;
+    let place_of = |secs: f64| rail.left() + ((secs / duration) as f32).clamp(0.0, 1.0) * rail.width();
     for (at, marker) in markers.iter().enumerate() {
         let id = ui.scope_id().with(("marker", at));
         let moved: Option<f64> = ui.ctx().data(|data| data.get_temp(id));
         let secs = moved.unwrap_or(marker.secs);
-        let x = rail.left() + ((secs / duration) as f32).clamp(0.0, 1.0) * rail.width();
+        let x = place_of(secs);
         let flag = Rect::from_min_size(pos2(x - 1.0, rail.top() - 9.0), vec2(9.0, 9.0));
         let response = ui.interact(flag.expand(2.0), id, Sense::click_and_drag());
         response.widget_info(|| {
@@ -163,17 +166,23 @@ fn markers_ui(ui: &Ui, rail: Rect, clip: &crate::clip::Clip, scope: &mut Scope<'
         let points =
             vec![flag.left_top(), pos2(flag.right(), flag.top() + 3.0), pos2(flag.left(), flag.top() + 6.0)];
         painter.add(egui::Shape::convex_polygon(points, look.text, egui::Stroke::NONE));
-        // The name, where it does not lie on the one before it.
-        let font = FontId::proportional(10.5);
-        let galley = painter.layout_no_wrap(marker.name.clone(), font, look.text);
+        // The name, as far as the next flag leaves room for it.
         let left = flag.right() + 1.0;
-        if left >= free_from && left + galley.size().x <= rail.right() + INSET {
+        let ends = markers.iter().map(|other| place_of(other.secs)).filter(|&other| other > x);
+        let room = ends.fold(rail.right() + INSET, |end, other| end.min(other - 4.0)) - left;
+        if room > LEAST_NAME {
+            let mut job = egui::text::LayoutJob::single_section(
+                marker.name.clone(),
+                egui::TextFormat::simple(FontId::proportional(10.5), look.text),
+            );
+            job.wrap = egui::text::TextWrapping::truncate_at_width(room);
+            let galley = painter.layout_job(job);
             let place = pos2(left, flag.top() - 4.0);
             let plate = Rect::from_min_size(place, galley.size()).expand2(vec2(2.0, 0.0));
             painter.rect_filled(plate, 2.0, look.panel);
-            free_from = left + galley.size().x + 8.0;
             painter.galley(place, galley, look.text);
         }
+        let response = response.on_hover_text(format!("{}, {}", marker.name, seconds(secs)));
         super::super::widgets::focus_ring(ui, &response);
         if response.dragged()
             && let Some(pointer) = response.interact_pointer_pos()
@@ -238,14 +247,15 @@ fn scrub_bar(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
         painter.rect_stroke(span, 2.0, (1.0, look.selection), egui::StrokeKind::Outside);
     }
     key_marks(painter, rail, clip, scope);
-    let mut last = [f32::NEG_INFINITY; 2];
+    // One stroke for each two points at most. Snags come by their starts, so their middles do not rise.
+    let mut has_stroke = vec![[false; 2]; (rail.width() / 2.0) as usize + 1];
     for (snag, &state) in scope.bench.snags().iter().zip(scope.states.iter()) {
         let at = x(f64::midpoint(snag.first_secs, snag.last_secs));
         let lane = usize::from(state != SnagState::Open);
-        if at - last[lane] >= 2.0 {
+        let Some(cell) = has_stroke.get_mut(((at - rail.left()) / 2.0).max(0.0) as usize) else { continue };
+        if !std::mem::replace(&mut cell[lane], true) {
             let color = if lane == 0 { look.snag } else { look.axis };
             painter.vline(at, rail.top() - 6.0..=rail.top() - 1.0, (1.5, color));
-            last[lane] = at;
         }
     }
     if let Some((from, to)) = playback.range {

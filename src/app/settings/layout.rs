@@ -124,7 +124,9 @@ impl Layout {
         let by_rule = match divider {
             Divider::Space => (size.x * 0.34).clamp(280.0, 760.0),
             Divider::JointSheet => (size.y * 0.42).clamp(180.0, 540.0),
-            Divider::Map | Divider::Lists => (size.y * 0.31).clamp(126.0, 520.0),
+            // Of a low window the map takes what the curves can spare, or it would show three joints.
+            Divider::Map => (size.y * 0.31).clamp(134.0, 520.0),
+            Divider::Lists => (size.y * 0.31).clamp(126.0, 520.0),
             Divider::Lane => (size.y * 0.20).clamp(144.0, 260.0),
             Divider::Passes => (size.x * 0.235).clamp(250.0, 460.0),
         };

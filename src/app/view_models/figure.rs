@@ -305,7 +305,8 @@ pub fn figure_view(stage: &Stage, request: &FigureRequest<'_>) -> FigureView {
     }
     let handles = chosen.zip(request.handling).and_then(|(joint, handling)| {
         let view = scene.view();
-        let radius_px = disc_radius_px(request.size_px, f64::from(request.scale));
+        let seen = view.project(world[joint].position())?;
+        let radius_px = disc_radius_px(request.size_px, f64::from(request.scale), seen.pixel);
         let handles = handles(shown, &world, joint, handling.planes, handling.roles, &view, radius_px)?;
         add_handles(&mut scene, &handles, &handling);
         Some(handles)

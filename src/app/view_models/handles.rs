@@ -66,15 +66,23 @@ pub struct Handles {
     pub tip: Option<TipHandle>,
 }
 
-/// Radius of the plane discs, points.
+/// Radius of the plane discs, points, and the least of it near the picture's edge.
 const RADIUS_POINTS: f64 = 64.0;
+const LEAST_RADIUS_POINTS: f64 = 34.0;
+/// Beyond the outermost rim a grip needs so many points more.
+const GRIP_POINTS: f64 = 6.0;
 /// Twist and free, against the plane discs.
 const TWIST_SHARE: f64 = 0.62;
 const FREE_SHARE: f64 = 1.26;
 
-/// The radius of the plane discs in a picture of that size, pixels; `scale` is pixels to a point.
-pub fn disc_radius_px(size_px: [usize; 2], scale: f64) -> f64 {
-    (RADIUS_POINTS * scale).min(0.24 * size_px[0].min(size_px[1]) as f64)
+/// The radius of the plane discs in a picture of that size, pixels; `scale` is pixels to a point. Near the picture's edge discs are smaller, so
+/// that their grips can be reached; `at` is where their middle is seen.
+pub fn disc_radius_px(size_px: [usize; 2], scale: f64, at: DVec2) -> f64 {
+    let size = DVec2::new(size_px[0] as f64, size_px[1] as f64);
+    let usual = (RADIUS_POINTS * scale).min(0.24 * size.min_element());
+    let least = (LEAST_RADIUS_POINTS * scale).min(0.2 * size.min_element());
+    let room = at.min(size - at).min_element();
+    ((room - GRIP_POINTS * scale) / FREE_SHARE).max(least).min(usual)
 }
 
 /// The handles of a joint in a pose (`world`, one entry for each joint) as they lie in a view, the plane discs of a radius of so

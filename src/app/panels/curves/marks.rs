@@ -23,11 +23,8 @@ pub(super) fn bands_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
         let color = set.lines.get(band.line).map_or(look.axis, |line| look.curve(line.color));
         let (fill, stroke) = (color.gamma_multiply(0.13), Stroke::new(1.2, color.gamma_multiply(0.7)));
         let name = set.lines.get(band.line).map_or("", |line| line.name.as_str());
-        let label = |y: f32, align: Align2| {
-            let words = format!("limit of {name}");
-            let font = FontId::proportional(11.0);
-            painter.text(pos2(plot.left() + 6.0, y), align, words, font, look.faint);
-        };
+        let label =
+            |y: f32, align: Align2| limit_words(painter, look, plot, &format!("limit of {name}"), y, align);
         let level = |value: f64, is_top: bool| {
             let y = chart.values.y(value);
             let rows =
@@ -68,6 +65,22 @@ pub(super) fn bands_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
             }
         }
     }
+}
+
+/// Says what a shaded band stands for, at its edge at the left end of the chart: below the marks of snags, on a ground of its own so that
+/// curves don't strike it out. A low chart has no room for it; its curves are told by their colour.
+pub(super) fn limit_words(painter: &Painter, look: &Look, plot: Rect, words: &str, y: f32, align: Align2) {
+    const LEAST_HEIGHT: f32 = 90.0;
+    if plot.height() < LEAST_HEIGHT {
+        return;
+    }
+    let galley = painter.layout_no_wrap(words.to_owned(), FontId::proportional(11.0), look.faint);
+    let plate = align.anchor_size(pos2(plot.left() + 6.0, y), galley.size());
+    let below_marks = plot.top() + 15.0;
+    let down = (below_marks - plate.top()).max(0.0) - (plate.bottom() - plot.bottom()).max(0.0);
+    let plate = plate.translate(vec2(0.0, down));
+    painter.rect_filled(plate.expand2(vec2(2.0, 0.0)), 2.0, look.background.gamma_multiply(0.7));
+    painter.galley(plate.min, galley, look.faint);
 }
 
 /// The curves: the source in grey, the result in colour, and in front of it what is being done by hand.
@@ -153,7 +166,7 @@ pub(super) fn snag_spans_ui(
 ) {
     let look = &scope.look;
     let chosen = scope.bench.session.snag;
-    let mut last_x = f32::NEG_INFINITY;
+    let mut plates: Vec<(f32, char, SnagState, bool)> = Vec::new();
     for (snag, &state) in scope.bench.snags().iter().zip(scope.states.iter()) {
         if !scope.bench.shown_joint(snag.joint).is_some_and(|joint| joints.contains(&joint)) {
             continue;
@@ -174,9 +187,15 @@ pub(super) fn snag_spans_ui(
         let y = plot.top() - 2.0;
         painter.hline(left - 1.5..=right + 1.5, y, (3.0, color));
         let middle = f32::midpoint(left.max(axis.span.min), right.min(axis.span.max));
-        if middle > last_x + 14.0 || is_chosen {
-            letter_plate(painter, look, pos2(middle, y + 9.0), 13.0, snag.kind.letter(), state);
-            last_x = middle;
+        plates.push((middle, snag.kind.letter(), state, is_chosen));
+    }
+    // Snags come by their starts: the middle of a long one may lie behind many that start later.
+    plates.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let mut last_x = f32::NEG_INFINITY;
+    for (x, letter, state, is_chosen) in plates {
+        if x > last_x + 14.0 || is_chosen {
+            letter_plate(painter, look, pos2(x, plot.top() + 7.0), 13.0, letter, state);
+            last_x = x;
         }
     }
 }
@@ -205,7 +224,8 @@ pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
     }
     let font = FontId::proportional(12.0);
     let mut places: Vec<(f32, String, Color32)> = Vec::new();
-    for set in chart.sets {
+    let mut of_chosen = 0;
+    for (place, set) in chart.sets.iter().enumerate() {
         let joint =
             if several { format!("{} ", short(chart.clip.skeleton.label(set.joint))) } else { String::new() };
         for (index, line) in set.lines.iter().enumerate() {
@@ -215,9 +235,16 @@ pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
                 places.push((y, format!("{joint}{}", line.name), legible(look, line.color)));
             }
         }
+        if place == 0 {
+            of_chosen = places.len();
+        }
+    }
+    let rows = chart.values.rows;
+    // Names of several joints side by side would hide a low chart: there the chosen joint's stay, the pointer tells the others.
+    if several && APART * places.len() as f32 > rows.span() {
+        places.truncate(of_chosen);
     }
     places.sort_by(|a, b| a.0.total_cmp(&b.0));
-    let rows = chart.values.rows;
     let mut lowest = f32::NEG_INFINITY;
     let count = places.len();
     let mut taken: Vec<Rect> = Vec::new();
@@ -233,8 +260,11 @@ pub(super) fn names_ui(painter: &Painter, look: &Look, chart: &Chart<'_>) {
         if plate.left() < chart.axis.span.min {
             continue;
         }
+        // A bit of curve that shows between the last name and the end of the chart would be read as part of the name.
+        let is_last = plate.right() + 4.0 > chart.axis.span.max;
+        let ground = if is_last { plate.with_max_x(chart.axis.span.max + 1.0) } else { plate };
         taken.push(plate);
-        painter.rect_filled(plate, 3.0, look.background.gamma_multiply(0.85));
+        painter.rect_filled(ground, 3.0, look.background.gamma_multiply(0.85));
         painter.galley(plate.min + vec2(3.0, 0.0), galley, look.text);
     }
 }
@@ -256,10 +286,12 @@ pub(super) fn legend_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, now: 
             painter.circle_filled(pos2(left + 6.0, y), 3.6, color);
         }
         let at = pos2(left + 17.0, y);
-        let name = painter.text(at, Align2::LEFT_CENTER, &line.name, FontId::proportional(12.5), look.text);
         let mono = FontId::monospace(11.5);
         let words = |value: Option<f64>| value.map_or(String::new(), |value| number(value, set.unit));
         let value = words(chart.value(set, index, now));
+        // Beside its value a name in brackets would lie on the numbers of the axis: its order is told at the curve's end.
+        let name = if is_low { line.name.split(" (").next().unwrap_or(&line.name) } else { &line.name };
+        let name = painter.text(at, Align2::LEFT_CENTER, name, FontId::proportional(12.5), look.text);
         let before = words(set.times.value(line.before.values(), now));
         if is_low {
             painter.text(pos2(name.right() + 7.0, y), Align2::LEFT_CENTER, &value, mono, look.text);

@@ -1,10 +1,11 @@
 //! How far the curve with the dot may go, in views where limits have no level of their own.
 
-use egui::{FontId, Painter, Pos2, Rangef, Rect, Shape, Stroke, pos2};
+use egui::{Align2, FontId, Painter, Pos2, Rangef, Rect, Shape, Stroke, pos2};
 
 use super::super::super::view_models::RoomKey;
 use super::super::Scope;
 use super::chart::Chart;
+use super::marks::limit_words;
 
 /// So many points lie between two moments.
 const APART: f32 = 4.0;
@@ -74,16 +75,16 @@ pub(super) fn room_ui(painter: &Painter, chart: &Chart<'_>, scope: &mut Scope<'_
         .map(|(_, own)| own.name.as_str())
         .collect();
     let words = format!("limit of {} while {} stay", own.name, others.join(" and "));
-    let galley = painter.layout_no_wrap(words, FontId::proportional(11.0), look.faint);
+    let size = painter.layout_no_wrap(words.clone(), FontId::proportional(11.0), look.faint).size();
     // Clear of the edge for as long as the words are.
-    let beside = ((galley.size().x / APART).ceil() as usize + 3).min(columns);
+    let beside = ((size.x / APART).ceil() as usize + 3).min(columns);
     let [low, high] = (0..beside)
         .map(heights)
         .fold([rows.min, rows.max], |[low, high], own| [low.max(own[0]), high.min(own[1])]);
-    let left = plot.left() + 6.0;
-    if high > rows.min + galley.size().y {
-        painter.galley(pos2(left, high - galley.size().y), galley, look.faint);
-    } else if low < rows.max - galley.size().y {
-        painter.galley(pos2(left, low), galley, look.faint);
+    // Below rather than above: marks of snags lie along the top.
+    if low < rows.max - size.y {
+        limit_words(painter, &look, plot, &words, low, Align2::LEFT_TOP);
+    } else if high > rows.min + size.y {
+        limit_words(painter, &look, plot, &words, high, Align2::LEFT_BOTTOM);
     }
 }

@@ -76,6 +76,9 @@ pub(crate) fn skeleton_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     }
 }
 
+/// The least of a disc's radius, points.
+const DISC_ROOM: f64 = 36.0;
+
 /// The camera of this frame: fitted if that was asked for, else moved by the pointer.
 fn camera_now(
     ui: &Ui,
@@ -107,7 +110,10 @@ fn camera_now(
     }
     let around = own.as_ref().unwrap_or(if follows { &stage.figure } else { &stage.travel });
     // Around one limb some of its neighbours stay in view.
-    camera.fit(around, size_px[0], size_px[1], if own.is_some() { 0.5 } else { 0.12 });
+    // Around the whole figure there is room for the discs of a root on the floor, though not at the price of the figure.
+    let half_height = 0.5 * f64::from(bounds.height()).max(1.0);
+    let margin = if own.is_some() { 0.5 } else { (DISC_ROOM / half_height).clamp(0.12, 0.18) };
+    camera.fit(around, size_px[0], size_px[1], margin);
     if own.is_some() && follows {
         camera.target -= stage.gone(result, time_secs);
     }

@@ -41,8 +41,7 @@ fn marks(axis: &TimeAxis, rows: &Rows<'_>, scope: &Scope<'_>) -> Vec<Mark> {
         counts[place] += usize::from(in_sight(Rangef::new(axis.x(snag.first_secs), axis.x(snag.last_secs))));
     }
     let most = (axis.span.span() / (3.0 * MARK)) as usize;
-    let mut last: Vec<Option<usize>> = vec![None; rows.visible.len()];
-    let mut found: Vec<Mark> = Vec::new();
+    let mut of_row: Vec<Vec<Mark>> = rows.visible.iter().map(|_| Vec::new()).collect();
     for (index, (snag, &state)) in scope.bench.snags().iter().zip(scope.states.iter()).enumerate() {
         let shown = scope.bench.shown_joint(snag.joint);
         let Some(place) = shown.and_then(|joint| place_of.get(joint).copied().flatten()) else { continue };
@@ -51,22 +50,28 @@ fn marks(axis: &TimeAxis, rows: &Rows<'_>, scope: &Scope<'_>) -> Vec<Mark> {
             continue;
         }
         let is_stroke = counts[place] > most;
-        let apart = if is_stroke { STROKE_APART } else { MARK + 1.0 };
         let visible = Rangef::new(span.min.max(axis.span.min), span.max.min(axis.span.max));
-        let mark =
-            Mark { index, place, x: visible.center(), letter: snag.kind.letter(), state, span, is_stroke };
-        let is_chosen = chosen.is_some_and(|chosen| std::ptr::eq(chosen, snag));
-        match last[place] {
-            // Open ones go before mended ones, and the chosen one before all.
-            Some(before) if found[before].x > mark.x - apart => {
-                if is_chosen || (mark.state < found[before].state) {
-                    let at = found[before].x;
-                    found[before] = Mark { x: if is_chosen { mark.x } else { at }, ..mark };
+        let (x, letter) = (visible.center(), snag.kind.letter());
+        of_row[place].push(Mark { index, place, x, letter, state, span, is_stroke });
+    }
+    let chosen =
+        chosen.and_then(|chosen| scope.bench.snags().iter().position(|own| std::ptr::eq(own, chosen)));
+    let is_chosen = |mark: &Mark| Some(mark.index) == chosen;
+    let mut found: Vec<Mark> = Vec::new();
+    for mut marks in of_row {
+        // Snags come by their starts: the middle of a long one may lie behind many that start later.
+        marks.sort_by(|a, b| a.x.total_cmp(&b.x));
+        let first = found.len();
+        for mark in marks {
+            let apart = if mark.is_stroke { STROKE_APART } else { MARK + 1.0 };
+            match found[first..].last_mut().filter(|before| before.x > mark.x - apart) {
+                // Open ones go before mended ones, and the chosen one before all.
+                Some(before) if is_chosen(&mark) => *before = mark,
+                Some(before) if mark.state < before.state && !is_chosen(before) => {
+                    *before = Mark { x: before.x, ..mark };
                 }
-            }
-            _ => {
-                last[place] = Some(found.len());
-                found.push(mark);
+                Some(_) => {}
+                None => found.push(mark),
             }
         }
     }

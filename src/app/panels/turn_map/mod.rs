@@ -15,11 +15,17 @@ use super::super::commands::Action;
 use super::super::pictures::RowsKey;
 use super::super::theme::{GUTTER_WIDTH, INSET, RULER_HEIGHT, TIME_MARGIN};
 use super::super::view_models::{HeatMap, MapRow, map_rows, ticks};
-use super::super::widgets::{TimeAxis, hint, playhead, scrub_and_zoom, segment, segments, strip};
+use super::super::widgets::{
+    TimeAxis, bring_into_view, hint, playhead, scrub_and_zoom, segment, segments, strip,
+};
 use super::Scope;
 use crate::clip::Clip;
 
 const ROW_HEIGHTS: [f32; 2] = [16.0, 24.0];
+/// A map lower than this has rows of the least height that letters fit into, and times alone above them: else it would show three joints.
+const LOW: f32 = 130.0;
+const LOW_ROW: f32 = 14.0;
+const LOW_RULER: f32 = 18.0;
 
 /// Folding and the order of rows, and a list of what colours may show, need so many points in the strip.
 const ROOM_FOR_SWITCHES: f32 = 250.0;
@@ -57,7 +63,8 @@ pub(crate) fn turn_map_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         span: Rangef::new(area.left() + GUTTER_WIDTH, area.right() - TIME_MARGIN),
         window: scope.bench.session.window,
     };
-    let ruler = Rect::from_min_size(area.min, vec2(area.width(), RULER_HEIGHT));
+    let ruler_height = if area.height() < LOW { LOW_RULER } else { RULER_HEIGHT };
+    let ruler = Rect::from_min_size(area.min, vec2(area.width(), ruler_height));
     ruler_ui(ui, ruler, &axis, &clip, scope);
     let body = Rect::from_min_max(pos2(area.left(), ruler.bottom()), area.max);
     let mut child = ui.new_child(UiBuilder::new().max_rect(body));
@@ -95,8 +102,11 @@ fn ruler_ui(ui: &mut Ui, ruler: Rect, axis: &TimeAxis, clip: &Clip, scope: &mut 
     }
     let font = FontId::proportional(11.5);
     let left = ruler.left() + INSET;
+    let has_frames = ruler.height() > LOW_RULER;
     painter.text(pos2(left, ruler.top() + 9.0), Align2::LEFT_CENTER, "time", font.clone(), look.faint);
-    painter.text(pos2(left, ruler.top() + 21.0), Align2::LEFT_CENTER, "frame", font.clone(), look.faint);
+    if has_frames {
+        painter.text(pos2(left, ruler.top() + 21.0), Align2::LEFT_CENTER, "frame", font.clone(), look.faint);
+    }
     // Where one frame takes several marks it is written once.
     let mut last_frame = String::new();
     for tick in ticks(axis.window, &clip.grid, f64::from(axis.span.span())) {
@@ -111,7 +121,7 @@ fn ruler_ui(ui: &mut Ui, ruler: Rect, axis: &TimeAxis, clip: &Clip, scope: &mut 
                     if is_before { (x - 4.0, Align2::RIGHT_CENTER) } else { (x + 4.0, Align2::LEFT_CENTER) };
                 let at = align.anchor_size(pos2(side, ruler.top() + 9.0), own.size());
                 painter.galley(at.min, own, look.text);
-                if frame != last_frame {
+                if has_frames && frame != last_frame {
                     let at = pos2(side, ruler.top() + 21.0);
                     painter.text(at, align, &frame, font.clone(), look.faint);
                     last_frame = frame;
@@ -155,7 +165,9 @@ fn rows_ui(
         hint(ui, "This skeleton has no joints");
         return;
     }
-    let row_height = (body.height() / order.len() as f32).clamp(ROW_HEIGHTS[0], ROW_HEIGHTS[1]).floor();
+    let least = if body.height() < LOW - LOW_RULER { LOW_ROW } else { ROW_HEIGHTS[0] };
+    let row_height = (body.height() / order.len() as f32).clamp(least, ROW_HEIGHTS[1]).floor();
+    let seen_before = std::mem::replace(&mut scope.pictures.map_height, body.height());
     ScrollArea::vertical()
         .id_salt("turn map rows")
         .auto_shrink(false)
@@ -174,15 +186,13 @@ fn rows_ui(
             let top_row = top + first as f32 * row_height;
             let rows = Rows { top: top_row, height: row_height, visible, deepest, heat };
             if let Some(joint) = scope.bench.session.joint
-                && scope.pictures.scroll_to_joint == Some(joint)
+                && (scope.pictures.scroll_to_joint == Some(joint) || body.height() < seen_before)
                 && let Some(place) =
                     order.iter().position(|row| row.members.iter().any(|&own| heat.joints[own] == joint))
             {
-                let row = Rect::from_min_size(
-                    pos2(body.left(), top + place as f32 * row_height),
-                    vec2(1.0, row_height),
-                );
-                ui.scroll_to_rect(row, None);
+                let row = Rangef::new(place as f32, place as f32 + 1.0) * row_height;
+                let is_asked = scope.pictures.scroll_to_joint == Some(joint);
+                bring_into_view(ui, top, row, [viewport.top(), seen_before], is_asked);
             }
             draw_rows(ui, body, axis, clip, &rows, scope);
         });
