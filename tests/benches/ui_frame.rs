@@ -1,5 +1,5 @@
 //! How long does one frame of the window take? `cargo bench --bench ui_frame` (`FRAMES=36000` in front: that length alone): a window without a display, 60 joints, 36,000 and 432,000 frames
-//! (5 minutes and an hour at 120 a second), while scrubbing, playing and dragging a key, at two sizes; and, over the first length, while
+//! (5 minutes and an hour at 120 a second) in turn, while scrubbing, playing and dragging a key, at two sizes; and, over the first length, while
 //! scrubbing and dragging a contact in the retarget sheet, with a figure of 60 joints that is smaller.
 //!
 //! Time of the processor: the interface and the tessellation on their thread, and half of the painting, which two threads
@@ -10,6 +10,7 @@
 mod processor;
 
 use std::f64::consts::TAU;
+use std::fmt;
 use std::path::Path;
 use std::sync::Arc;
 use std::time::{Duration, Instant};
@@ -117,6 +118,53 @@ enum Doing {
     DraggingKey,
     ScrubbingRetarget,
     DraggingContact,
+}
+
+/// Each length is measured in so many rounds of so many frames.
+const ROUNDS: usize = 7;
+const FRAMES_A_ROUND: usize = 40;
+
+/// Frames of one length, round by round.
+#[derive(Clone, Debug, Default)]
+struct Tally {
+    /// The middle frame of each round.
+    middles: Vec<Cost>,
+    frames: Vec<Duration>,
+}
+
+impl Tally {
+    fn add(&mut self, mut round: Vec<Cost>) {
+        round.sort_by_key(|cost| cost.sum());
+        self.middles.push(round[round.len() / 2]);
+        self.middles.sort_by_key(|cost| cost.sum());
+        self.frames.extend(round.iter().map(|cost| cost.sum()));
+        self.frames.sort();
+    }
+
+    /// Milliseconds of the middle frame of each round, rising.
+    fn sums(&self) -> Vec<f64> {
+        self.middles.iter().map(|cost| ms(cost.sum())).collect()
+    }
+}
+
+impl fmt::Display for Tally {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let (least, middle) = (self.middles[0], self.middles[self.middles.len() / 2]);
+        write!(
+            f,
+            "least round {:.2} ms, middle {:.2} ms (ui {:.2}, tessellation {:.2}, painting {:.2} on one thread), 95 % within {:.2} ms",
+            ms(least.sum()),
+            ms(middle.sum()),
+            ms(middle.ui),
+            ms(middle.tessellation),
+            ms(middle.painting),
+            ms(self.frames[self.frames.len() * 95 / 100])
+        )
+    }
+}
+
+fn ms(time: Duration) -> f64 {
+    time.as_secs_f64() * 1e3
 }
 
 struct Desk {
@@ -259,41 +307,49 @@ fn main() {
     };
     let mut criterion: Criterion<CpuTime> =
         Criterion::default().with_measurement(CpuTime).configure_from_args();
-    let mut known: Vec<(String, f64)> = Vec::new();
-    for &frames in &lengths {
-        let sources = vec![source("long.bvh", frames, 1.0), source("smaller.bvh", 2, 0.7)];
-        let on_bench = [Doing::Scrubbing, Doing::Playing, Doing::DraggingKey];
-        let in_sheet = [Doing::ScrubbingRetarget, Doing::DraggingContact];
-        let doings = on_bench.into_iter().chain(in_sheet.into_iter().filter(|_| frames == lengths[0]));
-        let doings: Vec<Doing> = doings.collect();
-        for size in [[1440.0, 900.0], [2560.0, 1440.0]] {
-            let mut desk = Desk::new(sources.clone(), size);
-            println!("{} snags", desk.window.bench().snags().len());
-            for &doing in &doings {
-                if doing == Doing::ScrubbingRetarget {
-                    desk.carry();
+    let sources: Vec<Vec<Arc<Source>>> = lengths
+        .iter()
+        .map(|&frames| vec![source("long.bvh", frames, 1.0), source("smaller.bvh", 2, 0.7)])
+        .collect();
+    let rounds = if is_test { 1 } else { ROUNDS };
+    for size in [[1440.0, 900.0], [2560.0, 1440.0]] {
+        let mut desks: Vec<Desk> = sources.iter().map(|own| Desk::new(own.clone(), size)).collect();
+        for (desk, frames) in desks.iter().zip(&lengths) {
+            println!("{frames} frames: {} snags", desk.window.bench().snags().len());
+        }
+        for doing in [
+            Doing::Scrubbing,
+            Doing::Playing,
+            Doing::DraggingKey,
+            Doing::ScrubbingRetarget,
+            Doing::DraggingContact,
+        ] {
+            let is_on_bench = matches!(doing, Doing::Scrubbing | Doing::Playing | Doing::DraggingKey);
+            let shown = if is_on_bench { desks.len() } else { 1 };
+            if doing == Doing::ScrubbingRetarget {
+                desks[0].carry();
+            }
+            let what = format!("{doing:?} {} × {}", size[0], size[1]);
+            let mut tallies = vec![Tally::default(); shown];
+            // In turn, so that what else the machine does meets all lengths alike.
+            for _ in 0..rounds {
+                for (desk, tally) in desks.iter_mut().zip(&mut tallies) {
+                    desk.start(doing);
+                    tally.add((0..FRAMES_A_ROUND).map(|_| desk.one(doing)).collect());
                 }
-                desk.start(doing);
-                let what = format!("{doing:?} {} × {}", size[0], size[1]);
-                let runs = if is_test { 2 } else { 120 };
-                let mut costs: Vec<Cost> = (0..runs).map(|_| desk.one(doing)).collect();
-                costs.sort_by_key(|cost| cost.sum());
-                let (median, worst) = (costs[runs / 2], costs[runs * 95 / 100]);
-                let ms = |time: Duration| time.as_secs_f64() * 1e3;
+            }
+            for (tally, frames) in tallies.iter().zip(&lengths) {
+                println!("{frames} frames, {what}: {tally}");
+            }
+            for (tally, frames) in tallies.iter().zip(&lengths).skip(1) {
+                let [least, middle] =
+                    [0, rounds / 2].map(|place| tally.sums()[place] / tallies[0].sums()[place]);
                 println!(
-                    "{frames} frames, {what}: median {:.2} ms (ui {:.2}, tessellation {:.2}, painting {:.2} on one thread), 95 % within {:.2} ms",
-                    ms(median.sum()),
-                    ms(median.ui),
-                    ms(median.tessellation),
-                    ms(median.painting),
-                    ms(worst.sum())
+                    "   {frames} over {}: {least:.2} of the time by the least rounds, {middle:.2} by the middle ones",
+                    lengths[0]
                 );
-                match known.iter().find(|(name, _)| *name == what) {
-                    Some((_, short)) => {
-                        println!("   {:.2} of the time for {} frames", ms(median.sum()) / short, lengths[0]);
-                    }
-                    None => known.push((what.clone(), ms(median.sum()))),
-                }
+            }
+            for (desk, frames) in desks.iter_mut().zip(&lengths).take(shown) {
                 let mut group = criterion.benchmark_group(format!("{frames} frames"));
                 group
                     .sample_size(10)
