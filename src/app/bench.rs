@@ -438,6 +438,12 @@ impl Bench {
         (joint < source.skeleton.len()).then(|| result.skeleton.find(source.skeleton.label(joint)))?
     }
 
+    /// The same for each joint of the source.
+    pub fn shown_joints(&self) -> Vec<Option<usize>> {
+        let count = self.source().map_or(0, |source| source.skeleton.len());
+        (0..count).map(|joint| self.shown_joint(joint)).collect()
+    }
+
     /// What has been worked out about it.
     pub fn findings(&self) -> Option<&Findings> {
         self.project.as_ref()?.findings.get(self.session.work)

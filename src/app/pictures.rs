@@ -10,7 +10,7 @@ use crate::limit::JointLimit;
 use crate::raster::{Camera, Canvas, SceneView, render_into};
 use crate::skeleton::LocalPose;
 
-use super::panels::{CurvePress, DistanceKey};
+use super::panels::{Columns, CurvePress, DistanceKey};
 use super::session::{Disc, SpaceHabits};
 use super::view_models::{
     CarryEye, Drag, FaintFigure, FigureView, HandTurns, HeatMap, LimitRooms, MapRow, Memo, Stage, Swept,
@@ -223,6 +223,8 @@ pub(crate) struct Pictures {
     pub press_is_on_mark: bool,
     /// How far the curve with the dot may go.
     pub room: LimitRooms,
+    /// The curves of the last frame, column by column.
+    pub columns: Columns,
     /// What a press on the curves has taken hold of.
     pub curve_press: Option<CurvePress>,
     /// The snag table is to bring the chosen snag into view.

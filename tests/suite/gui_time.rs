@@ -252,6 +252,17 @@ fn markers_are_added_named_jumped_to_and_undone() {
     bench.0.get_by_label_contains("Marker Marker 1,").click();
     bench.run();
     assert!((bench.window().bench().session.playback.playhead_secs - 1.0).abs() < 0.02);
+    // A drag moves one, as one step; past another they change places.
+    let (rail, steps) = (bench.0.get_by_label("Scrub bar").rect(), bench.steps());
+    let flag = bench.0.get_by_label_contains("Marker left foot down,").rect().center();
+    bench.drag(&[flag, egui::pos2(rail.center().x, flag.y)], Modifiers::NONE);
+    assert_eq!(
+        (bench.steps(), names(&bench)),
+        (steps + 1, vec!["Marker 1".to_owned(), "left foot down".to_owned()])
+    );
+    let half = 0.5 * bench.window().bench().result().expect("a clip").duration_secs;
+    let moved = bench.work().markers[1].secs;
+    assert!((moved - half).abs() < 0.03, "{moved} of {half}");
 }
 
 #[test]

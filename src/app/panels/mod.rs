@@ -33,7 +33,7 @@ use super::view_models::{SnagRow, SnagState};
 pub(crate) use areas::{bench_ui, transport_hint_ui};
 pub(crate) use blend_lane::blend_figures;
 pub(crate) use blend_picture::DistanceKey;
-pub(crate) use curves::CurvePress;
+pub(crate) use curves::{Columns, CurvePress};
 pub(crate) use dialogs::{Dialog, Form, Then, dialogs_ui};
 pub(crate) use menus::menus_ui;
 pub(crate) use messages::{Level, Message, messages_ui};

@@ -2,19 +2,20 @@
 
 use egui::{Painter, Pos2, Rect, Shape, Stroke, pos2};
 
-use super::super::super::view_models::{Pyramid, SampleTimes};
 use super::super::super::widgets::TimeAxis;
 use super::axis::ValueAxis;
+use super::columns::{Columns, Curve};
 
 /// Draws a curve with at most a few points for each pixel across, however long it is.
 pub(super) fn draw_curve(
     painter: &Painter,
-    row: &Pyramid,
-    times: &SampleTimes,
+    curve: &Curve<'_>,
     axis: &TimeAxis,
     values: &ValueAxis,
     stroke: Stroke,
+    kept: &mut Columns,
 ) {
+    let (row, times) = (curve.row(), &curve.set.times);
     let first = times.place(axis.window.start_secs).floor() as usize;
     let last = (times.place(axis.window.end_secs).ceil() as usize).min(row.len().saturating_sub(1));
     let columns = axis.span.span().max(1.0);
@@ -39,19 +40,13 @@ pub(super) fn draw_curve(
         return;
     }
     // More samples than pixels: for each column of pixels the span from its smallest to its largest value.
-    let columns = columns as usize;
-    let mut spans: Vec<Option<[f32; 2]>> = Vec::with_capacity(columns);
-    let mut from = first;
-    for column in 0..columns {
-        let right = axis.span.min + column as f32 + 1.0;
-        let to = (times.place(axis.time(right)).ceil() as usize).clamp(from, last + 1);
-        // One sample more, so that neighbouring columns meet.
-        let found = row.min_max(from.saturating_sub(1)..to);
-        spans.push(found.map(|[low, high]| [values.y(high.into()), values.y(low.into())]));
-        from = to.max(from);
-    }
+    let spans: Vec<Option<[f32; 2]>> = kept
+        .of(curve, axis)
+        .iter()
+        .map(|found| found.map(|[low, high]| [values.y(high.into()), values.y(low.into())]))
+        .collect();
     let total: f32 = spans.iter().flatten().map(|[top, bottom]| bottom - top).sum();
-    if total < 3.0 * columns as f32 {
+    if total < 3.0 * spans.len() as f32 {
         for (column, span) in spans.iter().enumerate() {
             match span {
                 Some([top, bottom]) => {

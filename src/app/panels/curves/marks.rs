@@ -9,6 +9,7 @@ use super::super::super::view_models::{
 use super::super::super::widgets::{TimeAxis, letter_plate, read_out};
 use super::super::Scope;
 use super::chart::Chart;
+use super::columns::{Columns, Curve};
 use super::draw::draw_curve;
 use super::short;
 
@@ -84,23 +85,32 @@ pub(super) fn limit_words(painter: &Painter, look: &Look, plot: Rect, words: &st
 }
 
 /// The curves: the source in grey, the result in colour, and in front of it what is being done by hand.
-pub(super) fn lines_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, shows_before: bool) {
+pub(super) fn lines_ui(
+    painter: &Painter,
+    look: &Look,
+    chart: &Chart<'_>,
+    shows_before: bool,
+    kept: &mut Columns,
+) {
+    kept.begin();
     let alone = chart.is_source_alone;
     let (axis, values) = (&chart.axis, &chart.values);
     for set in chart.sets {
-        for line in set.lines.iter().filter(|_| shows_before || alone) {
+        for (index, line) in set.lines.iter().enumerate().filter(|_| shows_before || alone) {
             let local = chart.local(set.joint).is_some();
             if line.after.is_some() || local {
                 let width = if alone { 1.6 } else { 1.2 };
-                draw_curve(painter, &line.before, &set.times, axis, values, Stroke::new(width, look.before));
+                let curve = Curve { set, line: index, is_source: true };
+                draw_curve(painter, &curve, axis, values, Stroke::new(width, look.before), kept);
             }
         }
     }
     if alone {
         for set in chart.sets {
-            for line in set.lines.iter().filter(|line| line.after.is_none()) {
+            for (index, line) in set.lines.iter().enumerate().filter(|(_, line)| line.after.is_none()) {
                 let stroke = Stroke::new(1.6, look.curve(line.color));
-                draw_curve(painter, &line.before, &set.times, axis, values, stroke);
+                let curve = Curve { set, line: index, is_source: true };
+                draw_curve(painter, &curve, axis, values, stroke, kept);
             }
         }
         return;
@@ -114,8 +124,9 @@ pub(super) fn lines_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, shows_
             } else {
                 Stroke::new(1.2, color.gamma_multiply(FURTHER_INK))
             };
+            let curve = Curve { set, line: index, is_source: false };
             let Some(local) = chart.local(set.joint) else {
-                draw_curve(painter, line.shown(), &set.times, axis, values, stroke);
+                draw_curve(painter, &curve, axis, values, stroke, kept);
                 continue;
             };
             let [start, end] = local.span().map(|secs| axis.x(secs));
@@ -123,7 +134,7 @@ pub(super) fn lines_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, shows_
             for part in [Rangef::new(clip.left(), start), Rangef::new(end, clip.right())] {
                 let part = Rect::from_x_y_ranges(part, clip.y_range()).intersect(clip);
                 if part.width() > 0.0 {
-                    draw_curve(&painter.with_clip_rect(part), line.shown(), &set.times, axis, values, stroke);
+                    draw_curve(&painter.with_clip_rect(part), &curve, axis, values, stroke, kept);
                 }
             }
             let Some(row) = local.rows.get(index) else { continue };
@@ -166,9 +177,15 @@ pub(super) fn snag_spans_ui(
 ) {
     let look = &scope.look;
     let chosen = scope.bench.session.snag;
+    let shown: Vec<bool> = scope
+        .bench
+        .shown_joints()
+        .iter()
+        .map(|shown| shown.is_some_and(|joint| joints.contains(&joint)))
+        .collect();
     let mut plates: Vec<(f32, char, SnagState, bool)> = Vec::new();
     for (snag, &state) in scope.bench.snags().iter().zip(scope.states.iter()) {
-        if !scope.bench.shown_joint(snag.joint).is_some_and(|joint| joints.contains(&joint)) {
+        if !shown.get(snag.joint).is_some_and(|&is_shown| is_shown) {
             continue;
         }
         let (left, right) = (axis.x(snag.first_secs), axis.x(snag.last_secs));

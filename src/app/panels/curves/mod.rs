@@ -3,6 +3,7 @@
 mod axis;
 mod bar;
 mod chart;
+mod columns;
 mod draw;
 mod hand;
 mod keys;
@@ -20,6 +21,7 @@ use super::Scope;
 use axis::ValueAxis;
 use chart::Chart;
 
+pub(crate) use columns::Columns;
 pub(crate) use hand::CurvePress;
 
 /// Height of the lane of keys below the chart.
@@ -120,7 +122,7 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     marks::bands_ui(&inside, &look, &chart);
     room::room_ui(&inside, &chart, scope);
     marks::snag_spans_ui(&inside, &axis, plot, &joints, scope);
-    marks::lines_ui(&inside, &look, &chart, session.shows_before);
+    marks::lines_ui(&inside, &look, &chart, session.shows_before, &mut scope.pictures.columns);
     marks::segment_ui(&inside, &look, &chart, session.curves.segment);
     // Pips at the ends of the clip are whole.
     let around = inside.with_clip_rect(inside.clip_rect().expand2(vec2(7.0, 0.0)));

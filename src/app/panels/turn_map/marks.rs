@@ -6,6 +6,7 @@ use super::super::super::view_models::SnagState;
 use super::super::super::widgets::{TimeAxis, letter_plate};
 use super::super::Scope;
 use super::Rows;
+use crate::snag::Snag;
 
 const MARK: f32 = 13.0;
 
@@ -31,41 +32,65 @@ fn marks(axis: &TimeAxis, rows: &Rows<'_>, scope: &Scope<'_>) -> Vec<Mark> {
             place_of[rows.heat.joints[member]] = Some(place);
         }
     }
-    let chosen = scope.bench.chosen_snag();
+    // The row of each joint of the source.
+    let row_of: Vec<Option<usize>> = scope
+        .bench
+        .shown_joints()
+        .iter()
+        .map(|shown| shown.and_then(|joint| place_of.get(joint).copied().flatten()))
+        .collect();
+    let snags = scope.bench.snags();
+    let chosen =
+        scope.bench.chosen_snag().and_then(|own| snags.iter().position(|snag| std::ptr::eq(snag, own)));
+    let is_chosen = |mark: &Mark| Some(mark.index) == chosen;
     // Plates shoulder to shoulder tell nothing, and an hour of them would take as long to draw as all the rest.
     let mut counts = vec![0_usize; rows.visible.len()];
-    let in_sight = |span: Rangef| span.max >= axis.span.min - MARK && span.min <= axis.span.max + MARK;
-    for snag in scope.bench.snags() {
-        let shown = scope.bench.shown_joint(snag.joint);
-        let Some(place) = shown.and_then(|joint| place_of.get(joint).copied().flatten()) else { continue };
-        counts[place] += usize::from(in_sight(Rangef::new(axis.x(snag.first_secs), axis.x(snag.last_secs))));
+    let seen = [-MARK, MARK].map(|by| axis.time(if by < 0.0 { axis.span.min } else { axis.span.max } + by));
+    let row_in_sight = |snag: &Snag| {
+        let place = row_of.get(snag.joint).copied().flatten()?;
+        (snag.last_secs >= seen[0] && snag.first_secs <= seen[1]).then_some(place)
+    };
+    for place in snags.iter().filter_map(row_in_sight) {
+        counts[place] += 1;
     }
     let most = (axis.span.span() / (3.0 * MARK)) as usize;
     let mut of_row: Vec<Vec<Mark>> = rows.visible.iter().map(|_| Vec::new()).collect();
-    for (index, (snag, &state)) in scope.bench.snags().iter().zip(scope.states.iter()).enumerate() {
-        let shown = scope.bench.shown_joint(snag.joint);
-        let Some(place) = shown.and_then(|joint| place_of.get(joint).copied().flatten()) else { continue };
+    let mut found: Vec<Mark> = Vec::new();
+    // Strokes of a crowded row: one in each cell, so that an hour of them takes the time of a minute.
+    let cells = (axis.span.span() / STROKE_APART) as usize + 1;
+    let mut strokes: Vec<Vec<Option<usize>>> =
+        counts.iter().map(|&count| if count > most { vec![None; cells] } else { Vec::new() }).collect();
+    for (index, (snag, &state)) in snags.iter().zip(scope.states.iter()).enumerate() {
+        let Some(place) = row_in_sight(snag) else { continue };
         let span = Rangef::new(axis.x(snag.first_secs), axis.x(snag.last_secs));
-        if !in_sight(span) {
-            continue;
-        }
         let is_stroke = counts[place] > most;
         let visible = Rangef::new(span.min.max(axis.span.min), span.max.min(axis.span.max));
-        let (x, letter) = (visible.center(), snag.kind.letter());
-        of_row[place].push(Mark { index, place, x, letter, state, span, is_stroke });
+        let mark =
+            Mark { index, place, x: visible.center(), letter: snag.kind.letter(), state, span, is_stroke };
+        if !is_stroke {
+            of_row[place].push(mark);
+            continue;
+        }
+        let cell = ((mark.x - axis.span.min) / STROKE_APART).max(0.0) as usize;
+        let Some(cell) = strokes[place].get_mut(cell) else { continue };
+        // Open ones go before mended ones, and the chosen one before all.
+        match cell.map(|before| &mut found[before]) {
+            Some(before) if is_chosen(&mark) || (mark.state < before.state && !is_chosen(before)) => {
+                *before = mark;
+            }
+            Some(_) => {}
+            None => {
+                *cell = Some(found.len());
+                found.push(mark);
+            }
+        }
     }
-    let chosen =
-        chosen.and_then(|chosen| scope.bench.snags().iter().position(|own| std::ptr::eq(own, chosen)));
-    let is_chosen = |mark: &Mark| Some(mark.index) == chosen;
-    let mut found: Vec<Mark> = Vec::new();
     for mut marks in of_row {
         // Snags come by their starts: the middle of a long one may lie behind many that start later.
         marks.sort_by(|a, b| a.x.total_cmp(&b.x));
         let first = found.len();
         for mark in marks {
-            let apart = if mark.is_stroke { STROKE_APART } else { MARK + 1.0 };
-            match found[first..].last_mut().filter(|before| before.x > mark.x - apart) {
-                // Open ones go before mended ones, and the chosen one before all.
+            match found[first..].last_mut().filter(|before| before.x > mark.x - (MARK + 1.0)) {
                 Some(before) if is_chosen(&mark) => *before = mark,
                 Some(before) if mark.state < before.state && !is_chosen(before) => {
                     *before = Mark { x: before.x, ..mark };
