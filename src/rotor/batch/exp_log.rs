@@ -22,7 +22,7 @@ pub fn exp<F: Real>(level: Level, angles: Parts<'_, F, 3>, out: PartsMut<'_, F, 
                 angles,
                 out,
                 #[inline(always)]
-                |angles: [&Column<F, 128>; 3], out: [&mut Column<F, 128>; 4]| exp_block(angles, out),
+                |angles: [&Column<F, 64>; 3], out: [&mut Column<F, 64>; 4]| exp_block(angles, out),
             );
         },
     );
@@ -40,8 +40,6 @@ fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&m
     }
     for row in 0..ROWS {
         out[0][row] = squares[row].cosine();
-    }
-    for row in 0..ROWS {
         factors[row] = -F::HALF * squares[row].sine_over_angle();
     }
     for part in 0..3 {
