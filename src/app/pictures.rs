@@ -35,7 +35,33 @@ impl<K> std::fmt::Debug for Picture<K> {
     }
 }
 
+/// A piece of a picture that is drawn anew, and where its top left corner goes, pixels.
+pub(crate) type Piece = ([usize; 2], ColorImage);
+
 impl<K: PartialEq> Picture<K> {
+    /// The texture for `key` as [`Self::show`] gives it. Of a picture that is there already only the pieces are drawn that `pieces` tells
+    /// from the old key and the new one; `None` draws it whole.
+    pub(crate) fn show_pieces(
+        &mut self,
+        ctx: &Context,
+        name: &str,
+        key: K,
+        pieces: impl FnOnce(&K, &K) -> Option<Vec<Piece>>,
+        draw: impl FnOnce(&K) -> ColorImage,
+    ) -> egui::TextureId {
+        if let (Some(texture), Some(old)) = (&mut self.texture, &self.key)
+            && *old != key
+            && let Some(pieces) = pieces(old, &key)
+        {
+            for (corner, image) in pieces {
+                texture.set_partial(corner, image, TextureOptions::NEAREST);
+            }
+            self.key = Some(key);
+            return texture.id();
+        }
+        self.show(ctx, name, key, draw)
+    }
+
     /// The texture for `key`, drawn anew only if the last one was of another key.
     pub(crate) fn show(
         &mut self,
@@ -119,10 +145,23 @@ pub(crate) struct MapKey {
     pub rows: Vec<MapRow>,
     /// The stretch of time.
     pub window: TimeWindow,
-    /// Pixels: width, and height of a row.
+    /// Pixels.
     pub size_px: [usize; 2],
     /// Whether the window is dark.
     pub is_dark: bool,
+}
+
+impl MapKey {
+    /// The places of the rows whose colours are not those of the picture of another key; `None` if that has other rows, another size
+    /// or another stretch of time.
+    pub(crate) fn changed_since(&self, old: &Self) -> Option<Vec<usize>> {
+        let is_alike = self.rows == old.rows
+            && self.window == old.window
+            && self.size_px == old.size_px
+            && self.is_dark == old.is_dark;
+        let is_same = |row: &MapRow| row.members.iter().all(|&own| self.map.has_row_of(&old.map, own));
+        is_alike.then(|| (0..self.rows.len()).filter(|&place| !is_same(&self.rows[place])).collect())
+    }
 }
 
 impl PartialEq for MapKey {

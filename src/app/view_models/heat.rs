@@ -54,18 +54,27 @@ pub struct HeatWish {
 #[derive(Clone, Debug, PartialEq)]
 struct Row {
     levels: Vec<Vec<u8>>,
+    /// How often each code stands in it.
+    counts: [u32; 256],
+    /// Its hottest value.
+    worst: f32,
 }
 
 const FACTOR: usize = 8;
 
 impl Row {
-    fn new(codes: Vec<u8>) -> Self {
+    fn new(values: &[f32]) -> Self {
+        let codes: Vec<u8> = values.iter().map(|&value| code(value)).collect();
+        let mut counts = [0; 256];
+        for &code in &codes {
+            counts[usize::from(code)] += 1;
+        }
         let mut levels = vec![codes];
         while let Some(top) = levels.last().filter(|top| top.len() > FACTOR) {
             let next = top.chunks(FACTOR).map(|chunk| chunk.iter().copied().max().unwrap_or(0)).collect();
             levels.push(next);
         }
-        Self { levels }
+        Self { levels, counts, worst: values.iter().copied().fold(0.0, f32::max) }
     }
 
     fn largest(&self, frames: Range<usize>) -> u8 {
@@ -100,8 +109,8 @@ pub struct HeatMap {
     pub limits: Option<(Arc<Limits>, bool)>,
     /// Why there is nothing to show.
     pub trouble: Option<String>,
-    rows: Vec<Row>,
-    worst: Vec<f32>,
+    /// Rows of joints that stayed the same are shared with the map before.
+    rows: Vec<Arc<Row>>,
 }
 
 /// From values to shares of the colour scale.
@@ -175,7 +184,13 @@ impl HeatMap {
 
     /// The hottest value of a row.
     pub fn worst(&self, row: usize) -> f32 {
-        self.worst[row]
+        self.rows[row].worst
+    }
+
+    /// Whether a row has the colours that it has in another map, as far as that is known without looking at its numbers.
+    pub fn has_row_of(&self, other: &Self, row: usize) -> bool {
+        let is_shared = |own: &Arc<Row>| other.rows.get(row).is_some_and(|known| Arc::ptr_eq(own, known));
+        self.scale == other.scale && self.rows.get(row).is_some_and(is_shared)
     }
 }
 
@@ -206,39 +221,32 @@ pub fn heat_map(
     let known = known.filter(|(old_source, _, map)| {
         std::ptr::eq(*old_source, source) && map.kind == kind && map.joints == joints && map.limits == limits
     });
-    let (mut rows, mut worst, mut all) = (Vec::new(), Vec::new(), [0_usize; 256]);
+    let mut rows = Vec::with_capacity(joints.len());
     for (place, &joint) in joints.iter().enumerate() {
         if !progress.report(place, joints.len()) {
             return Err(Cancelled);
         }
-        let (row, hottest) = match known {
-            Some((_, old, map)) if old.same_joint(result, joint) => {
-                (map.rows[place].clone(), map.worst[place])
-            }
-            _ => {
-                let values = match kind {
-                    HeatKind::TurnRate => rates(result, joint),
-                    HeatKind::Change => differences(source, result, joint),
-                    HeatKind::LimitUse => uses(limits.as_ref().map(|(own, _)| &**own), result, joint),
-                };
-                let codes = values.iter().map(|&value| code(value)).collect();
-                (Row::new(codes), values.into_iter().fold(0.0, f32::max))
-            }
-        };
-        for &code in &row.levels[0] {
-            all[usize::from(code)] += 1;
-        }
-        worst.push(hottest);
-        rows.push(row);
+        rows.push(match known {
+            Some((_, old, map)) if old.same_joint(result, joint) => Arc::clone(&map.rows[place]),
+            _ => Arc::new(Row::new(&match kind {
+                HeatKind::TurnRate => rates(result, joint),
+                HeatKind::Change => differences(source, result, joint),
+                HeatKind::LimitUse => uses(limits.as_ref().map(|(own, _)| &**own), result, joint),
+            })),
+        });
     }
     let top = match kind {
-        HeatKind::TurnRate => quantile(&all, 0.998).max(30.0),
-        HeatKind::Change => worst.iter().copied().fold(1.0, f32::max),
+        HeatKind::TurnRate => {
+            let counts: [usize; 256] =
+                std::array::from_fn(|code| rows.iter().map(|row| row.counts[code] as usize).sum());
+            quantile(&counts, 0.998).max(30.0)
+        }
+        HeatKind::Change => rows.iter().map(|row| row.worst).fold(1.0, f32::max),
         HeatKind::LimitUse => MOST_USE,
     };
     let is_even = kind == HeatKind::LimitUse;
     let scale = HeatScale { top: if is_even { top } else { round_up(top) }, is_even };
-    Ok(HeatMap { kind, joints, scale, limits, trouble, rows, worst })
+    Ok(HeatMap { kind, joints, scale, limits, trouble, rows })
 }
 
 /// The hottest colour of the use of limits, in percent: beyond the limit it goes on getting hotter for a while.
@@ -321,8 +329,9 @@ mod tests {
 
     #[test]
     fn the_hottest_of_any_range_is_the_plain_maximum() {
-        let codes: Vec<u8> = (0..5000_u32).map(|i| ((i * 7919) % 251) as u8).collect();
-        let row = Row::new(codes.clone());
+        let values: Vec<f32> = (0..5000_u32).map(|i| ((i * 7919) % 251) as f32).collect();
+        let codes: Vec<u8> = values.iter().map(|&value| code(value)).collect();
+        let row = Row::new(&values);
         for (start, end) in [(0, 1), (3, 5), (7, 900), (64, 4096), (1, 5000), (4990, 6000), (9, 9)] {
             let plain = codes[start..end.min(5000)].iter().copied().max().unwrap_or(0);
             assert_eq!(row.largest(start..end), plain, "{start}..{end}");
