@@ -5,6 +5,7 @@ use std::fmt;
 use std::str::FromStr;
 
 use super::Rotor;
+use super::bivector::length_of;
 
 /// One of the three axes a file's angle turns about.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
@@ -131,7 +132,7 @@ impl EulerOrder {
         } else {
             [q[3] - q[j], q[i] - q[k] * parity, q[3] + q[j], q[i] + q[k] * parity]
         };
-        let (near, far) = (a.hypot(b), c.hypot(d));
+        let (near, far) = (length_of(a, b), length_of(c, d));
         let middle = if proper {
             2.0 * far.atan2(near)
         } else {
@@ -140,7 +141,7 @@ impl EulerOrder {
         };
         let (half_sum, half_difference) = (b.atan2(a), d.atan2(c));
         let sign = if proper { 1.0 } else { -parity };
-        let pole = POLE * near.hypot(far);
+        let pole = POLE * length_of(near, far);
         // Brought into range before it is used: whole turns are not exact in f64.
         let kept = wrap(last_at_pole);
         let (first, last) = if far <= pole {

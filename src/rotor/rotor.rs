@@ -124,6 +124,10 @@ impl Rotor {
         /// Powers of two, which change no digits, and so large that squares are safe between the limits below.
         const UP: f64 = 1.157_920_892_373_162e77; // 2^256
         const DOWN: f64 = 1.0 / UP;
+        let norm = self.norm();
+        if (DOWN..=UP).contains(&norm) {
+            return Some(Self::new(self.s / norm, self.yz / norm, self.zx / norm, self.xy / norm));
+        }
         let largest = self.s.abs().max(self.yz.abs()).max(self.zx.abs()).max(self.xy.abs());
         if !(self.is_finite() && largest > 0.0) {
             return None;

@@ -4,6 +4,7 @@ use std::f64::consts::{PI, TAU};
 
 use glam::DVec3;
 
+use super::bivector::length_of;
 use super::{Bivector, Rotor};
 
 /// `rotation = swing * twist`: the twist comes first, about `axis`; the swing has no part about it.
@@ -30,7 +31,7 @@ impl SwingTwist {
     pub fn new(rotation: Rotor, axis: DVec3) -> Self {
         let plane = Bivector::from_axis(axis).normalize_or_zero();
         let along = rotation.bivector().dot(plane);
-        let certainty = along.hypot(rotation.s);
+        let certainty = length_of(along, rotation.s);
         if plane == Bivector::ZERO || certainty < UNDETERMINED {
             return Self { swing: rotation, twist: Rotor::IDENTITY, twist_rad: 0.0, certainty: 0.0 };
         }
