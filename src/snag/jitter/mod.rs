@@ -108,7 +108,7 @@ pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
                 // A span ends before the next, and that one behind this.
                 let start = index.checked_sub(1).map_or(0, |before| spans[before].last + 1);
                 let end = spans.get(index + 1).map_or(row.len(), |next| next.first);
-                spans[index] = ends::extended(&row, spans[index], &(start..end));
+                spans[index] = ends::fitted(&row, spans[index], &(start..end));
             }
         }
         if !spans.is_empty() {
@@ -512,4 +512,50 @@ fn snag(scan: &Scan<'_>, levels: &Levels<'_>, span: Span) -> Snag {
             scan.span(span.first, span.last)
         ),
     })
+}
+
+#[cfg(test)]
+mod tests {
+    use std::sync::Arc;
+
+    use glam::DVec3;
+
+    use super::super::outline::Outlines;
+    use super::*;
+    use crate::clip::{Clip, FrameGrid, JointTracks, RotationTrack};
+    use crate::rotor::Bivector;
+    use crate::skeleton::{Joint, Skeleton};
+
+    /// A joint that swings calmly and trembles from one key to another by so many degrees per axis.
+    pub(super) fn shaken(times: Times, (first, last): (usize, usize), noise_deg: f64, seed: u64) -> Clip {
+        let mut state = seed;
+        let mut unit = || {
+            state = state.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
+            (state >> 11) as f64 / (1_u64 << 53) as f64
+        };
+        // Irwin and Hall's near-normal number: the sum of twelve has a variance of 1.
+        let mut normal = || (0..12).map(|_| unit()).sum::<f64>() - 6.0;
+        let keys = (0..times.len()).map(|key| {
+            let secs = times.at(key);
+            let swing = Bivector::new((2.1 * secs).sin(), 0.4 * (3.3 * secs).cos(), 0.1);
+            let noise = Bivector::new(normal(), normal(), normal()) * noise_deg.to_radians();
+            let shake = if (first..=last).contains(&key) { noise } else { Bivector::new(0.0, 0.0, 0.0) };
+            Rotor::from_plane_angles(swing) * Rotor::from_plane_angles(shake)
+        });
+        let rotation = Some(RotationTrack::from_rotors(times.clone(), keys.collect::<Vec<_>>()));
+        Clip {
+            name: String::new(),
+            skeleton: Arc::new(Skeleton::new(vec![Joint::placed("arm", 0, None, DVec3::ZERO)]).unwrap()),
+            joints: vec![Arc::new(JointTracks { rotation, ..JointTracks::default() })],
+            duration_secs: times.at(times.len() - 1),
+            grid: FrameGrid { times, rate: 30.0 },
+        }
+    }
+
+    /// What is to be told of the first joint's row.
+    pub(super) fn with_row<T>(clip: &Clip, told: impl FnOnce(&Row<'_>) -> T) -> T {
+        let outlines = Outlines::new(1);
+        let scan = Scan::new(View { clip, outlines: &outlines }, 0).unwrap();
+        told(&Row::new(scan).unwrap())
+    }
 }
