@@ -20,6 +20,18 @@ pub(super) const SINE_OVER_ANGLE_F64: [f64; 9] = [
 pub(super) const SINE_OVER_ANGLE_F32: [f32; 5] =
     [1.0, -0.16666666, 0.0083332425, -0.0001982274, 2.6347564e-06];
 
+/// `sin √y / √y`, 0 ≤ y ≤ (π/2)², times `√y` within 1.1e-16: factors of rising powers.
+pub(super) const SHORT_SINE_F64: [f64; 8] = [
+    1.0,
+    -0.1666666666666581,
+    0.00833333333326288,
+    -0.0001984126982009407,
+    2.7557316076992292e-06,
+    -2.505185149611104e-08,
+    1.6047301170202392e-10,
+    -7.364646141625561e-13,
+];
+
 /// `cos √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
 pub(super) const COSINE_F64: [f64; 9] = [
     1.0,

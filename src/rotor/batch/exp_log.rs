@@ -40,7 +40,7 @@ fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&m
     }
     for row in 0..ROWS {
         out[0][row] = squares[row].cosine();
-        factors[row] = -F::HALF * squares[row].sine_over_angle();
+        factors[row] = -F::HALF * squares[row].short_sine();
     }
     for part in 0..3 {
         for row in 0..ROWS {

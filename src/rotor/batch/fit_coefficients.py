@@ -4,8 +4,9 @@
     python3 src/rotor/batch/fit_coefficients.py
 
 Each polynomial is a Chebyshev fit in 60 digits, of the function without its value at 0, which stays exact; each quotient meets
-its function at the Chebyshev points. The error printed is the largest of the fit itself, before its factors are rounded to the
-machine's numbers.
+its function at the Chebyshev points. `SHORT_SINE` is the polynomial whose *sine* errs least (exchange of points, Remez 1934): where
+the angle is small its factor may be rougher, as the angle multiplies it, and so one power less is enough where a single sine is asked, as in
+exp; slerp adds two. The error printed is the largest of the fit itself, before its factors are rounded to the machine's numbers.
 
 Why quotients of `d = cos θ` where the angle comes out of a cosine: 6 over 6 does what takes a polynomial of degree 18, its two halves don't
 wait for each other, and all its factors are above 0, so that nothing cancels (in `1 − d` they alternate and lose two digits).
@@ -58,6 +59,7 @@ HAIR = mp.mpf("1.000001")
 # name, what it is, function, end of the range, degree for f64 and f32 (None: no f32 kernel needs it).
 FITS = [
     ("SINE_OVER_ANGLE", "`sin √y / √y`, 0 ≤ y ≤ (π/2)²", sine_over_angle, QUARTER, 8, 4),
+    ("SHORT_SINE", "`sin √y / √y`, 0 ≤ y ≤ (π/2)², times `√y` within 1.1e-16", sine_over_angle, QUARTER, 7, None),
     ("COSINE", "`cos √y`, 0 ≤ y ≤ (π/2)²", cosine, QUARTER, 8, 5),
     ("ARC_TANGENT", "`atan √y / √y`, 0 ≤ y ≤ tan²(π/8)", arc_tangent, EIGHTH_TANGENT, 12, None),
     ("MIDDLE_RATE", "`θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u ≤ 1", middle_rate, mp.mpf(1), 5, None),
@@ -68,6 +70,39 @@ QUOTIENTS = [
     ("SQUARE_OVER_REST", "`θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1", square_over_rest, 6, 3),
     ("ANGLE_OVER_SINE", "`θ/sin θ` of `d = cos θ`, 0 ≤ d ≤ 1", angle_over_sine, 6, 3),
 ]
+
+
+def chebyshev(function, end, degree):
+    """Factors of rising powers of (f(y) − f(0))/y, and the largest error of f."""
+    # Near 0 its series by a tiny step, which 60 digits can bear.
+    step = mp.mpf(10) ** -20
+    rest = lambda y: (function(max(y, step)) - function(mp.mpf(0))) / max(y, step)
+    factors, error = mp.chebyfit(rest, [mp.mpf(0), end], degree, error=True)
+    return factors[::-1], error * end
+
+
+def least_sine(function, end, degree):
+    """Factors of rising powers of (f(y) − 1)/y for f = sin √y/√y, with the error of √y·f, the sine, as small as can be, and that error."""
+    weight = lambda y: y * mp.sqrt(y)
+    grid = [end * (1 - mp.cos(mp.pi * i / 2000)) / 2 for i in range(1, 2001)]
+    wanted = [(function(y) - 1) / y for y in grid]
+    points = [(2000 * (2 * i + 1)) // (2 * degree + 2) for i in range(degree + 1)]
+    while True:
+        rows = [[grid[k] ** p for p in range(degree)] + [(-1) ** i / weight(grid[k])] for i, k in enumerate(points)]
+        *factors, _ = mp.lu_solve(mp.matrix(rows), mp.matrix([wanted[k] for k in points]))
+        errors = [(mp.polyval(factors[::-1], y) - r) * weight(y) for y, r in zip(grid, wanted)]
+        # The largest error of each stretch of one sign. There are as many stretches as unknowns.
+        stretches = [0]
+        for k in range(1, len(grid)):
+            if mp.sign(errors[k]) != mp.sign(errors[stretches[-1]]):
+                stretches.append(k)
+            elif abs(errors[k]) > abs(errors[stretches[-1]]):
+                stretches[-1] = k
+        if len(stretches) != degree + 1:
+            raise ValueError(f"{len(stretches)} stretches for {degree + 1} unknowns")
+        if stretches == points:
+            return factors, max(abs(error) for error in errors)
+        points = stretches
 
 
 def quotient(function, degree):
@@ -114,12 +149,10 @@ for name, meaning, function, end, *degrees in FITS:
     for kind, degree in zip(("f64", "f32"), degrees):
         if degree is None:
             continue
-        # Chebyshev fit of (f(y) − f(0))/y; near 0 its series by a tiny step, which 60 digits can bear.
-        step = mp.mpf(10) ** -20
-        rest = lambda y: (function(max(y, step)) - at_zero) / max(y, step)
-        factors, error = mp.chebyfit(rest, [mp.mpf(0), end * HAIR], degree, error=True)
-        print(f"{name} {kind}: degree {degree}, error {mp.nstr(error * end, 3)}")
-        rising = [at_zero, *reversed(factors)]
+        fit = least_sine if name == "SHORT_SINE" else chebyshev
+        factors, error = fit(function, end * HAIR, degree)
+        print(f"{name} {kind}: degree {degree}, error {mp.nstr(error, 3)}")
+        rising = [at_zero, *factors]
         lines.append(f"/// {meaning}: factors of rising powers.")
         lines.append(f"pub(super) const {name}_{kind.upper()}: [{kind}; {degree + 1}] = [")
         lines.extend(f"    {text(kind, factor)}," for factor in rising)
