@@ -3,7 +3,7 @@
 use std::fmt::Write as _;
 
 use super::curves::JointCurves;
-use super::sheet_html::escape;
+use super::sheet_html::{breakable, escape};
 
 const WIDTH: f64 = 560.0;
 const HEIGHT: f64 = 190.0;
@@ -29,8 +29,9 @@ pub(super) fn curve_svg(curves: &JointCurves) -> String {
     let label = escape(&curves.label);
     let _ = write!(
         svg,
-        "<figure class=\"curve\"><figcaption><b>{label}</b> up to {:.3}° at {:.3} s</figcaption>\n<svg viewBox=\"0 0 {WIDTH} {HEIGHT}\" role=\"img\" \
+        "<figure class=\"curve\"><figcaption><b>{}</b> up to {:.3}° at {:.3} s</figcaption>\n<svg viewBox=\"0 0 {WIDTH} {HEIGHT}\" role=\"img\" \
          aria-label=\"Plane angles of {label} before and after, {start:.2} to {end:.2} seconds\">\n",
+        breakable(&curves.label),
         curves.change_rad.to_degrees(),
         curves.worst_secs,
     );

@@ -6,6 +6,7 @@ use base64::Engine as _;
 
 use crate::limit::{Keeping, adult};
 use crate::scene::PassNumber;
+use crate::snag::SnagKind;
 
 use super::curve_svg::curve_svg;
 use super::measure::{JointMeasure, Measurement};
@@ -18,6 +19,9 @@ const STYLE: &str = include_str!("sheet.css");
 
 /// Changes below this many degrees are what file formats round away.
 const ROUNDING_DEG: f64 = 1e-3;
+
+/// So many snags are counted at a glance; more are counted by kind.
+const MOST_UNCOUNTED: usize = 12;
 
 /// The sheet as an HTML page.
 pub fn sheet_html(sheet: &Sheet) -> String {
@@ -57,7 +61,7 @@ fn head(page: &mut String, sheet: &Sheet) {
     }
     page.push_str("</tbody>\n</table></div>\n");
     for note in &sheet.notes {
-        let _ = writeln!(page, "<p class=\"note\">{}</p>", escape(note));
+        let _ = writeln!(page, "<p class=\"note\">{}</p>", breakable(note));
     }
     page.push_str("</header>\n");
 }
@@ -66,11 +70,11 @@ fn clip_section(page: &mut String, clip: &ClipProof, is_one_of_several: bool) {
     let measurement = &clip.measurement;
     page.push_str("<section>\n");
     if is_one_of_several {
-        let _ = writeln!(page, "<h2>Clip {}</h2>", escape(&clip.label));
+        let _ = writeln!(page, "<h2>Clip {}</h2>", breakable(&clip.label));
     }
     came_in(page, clip);
     if let Some(warning) = unlike(measurement) {
-        let _ = writeln!(page, "<p class=\"note\">{}</p>", escape(&warning));
+        let _ = writeln!(page, "<p class=\"note\">{}</p>", breakable(&warning));
     }
     tiles(page, clip);
     passes(page, &clip.passes);
@@ -112,7 +116,7 @@ fn came_in(page: &mut String, clip: &ClipProof) {
     let _ = writeln!(
         page,
         "<p class=\"facts\"><b>{}</b> came in with {}, {} at {} a second ({} s) and {} of turns, {}.</p>",
-        escape(&clip.label),
+        breakable(&clip.label),
         counted(measurement.joints.len() + measurement.only_before.len(), "joint"),
         counted(measurement.frames, "frame"),
         plain(measurement.rate, 3),
@@ -152,11 +156,11 @@ fn passes(page: &mut String, passes: &[PassFacts]) {
             page,
             "<tr><td class=\"n\">{}</td><td>{}</td><td>{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td>{}</td></tr>",
             place + 1,
-            escape(&pass.title),
+            breakable(&pass.title),
             escape(&numbers(&pass.numbers)),
             pass.joints_changed,
             pass.change_rad.map_or_else(|| "–".to_owned(), degrees),
-            escape(&words.join(" ")),
+            breakable(&words.join(" ")),
         );
     }
     page.push_str("</tbody>\n</table></div>\n");
@@ -193,7 +197,7 @@ fn tiles(page: &mut String, clip: &ClipProof) {
             page,
             "<div><dt>{label}</dt><dd>{value}</dd><dd class=\"more\">{more}</dd></div>",
             value = escape(value),
-            more = escape(more)
+            more = breakable(more)
         );
     };
     let counts = [(clip.left(), "left"), (clip.meant(), "meant"), (clip.new.len(), "new")];
@@ -248,8 +252,13 @@ fn snags(page: &mut String, clip: &ClipProof) {
         page.push_str("<p>No snag was found in the clip before, and none after.</p>\n");
         return;
     }
+    page.push_str("<h3>What was found</h3>\n");
+    if clip.found.len() + clip.new.len() > MOST_UNCOUNTED {
+        kinds(page, clip);
+    }
     page.push_str(
-        "<h3>What was found</h3>\n<div class=\"wide\"><table>\n<thead><tr><th>State</th><th>Kind</th><th>Joint</th><th class=\"n\">Frames</th>\
+        "<div class=\"wide\"><table class=\"snags\">\n<colgroup><col span=\"2\"><col class=\"joint\"><col span=\"4\">\
+         <col class=\"mend\"><col span=\"2\"><col class=\"text\"></colgroup>\n<thead><tr><th>State</th><th>Kind</th><th>Joint</th><th class=\"n\">Frames</th>\
          <th class=\"n\">Seconds</th><th class=\"n\">Size</th><th class=\"n\">Sure</th><th>Mend</th><th class=\"n\">Change</th>\
          <th class=\"n\">Limb<br>end</th><th>What it is</th></tr></thead>\n<tbody>\n",
     );
@@ -275,13 +284,13 @@ fn snags(page: &mut String, clip: &ClipProof) {
              <td class=\"n\">{length}</td><td>{}</td></tr>",
             snag.kind.letter(),
             snag.kind,
-            escape(&snag.joint),
+            breakable(&snag.joint),
             range(snag.frames[0].to_string(), snag.frames[1].to_string()),
             range(plain(snag.secs[0], 2), plain(snag.secs[1], 2)),
             format_args!("{:.1}°", snag.size_rad.to_degrees()),
             100.0 * snag.confidence,
             escape(&mend),
-            escape(&(sentence(&snag.text) + advice)),
+            breakable(&(sentence(without_joint(snag)) + advice)),
         );
     };
     for snag in &clip.found {
@@ -293,14 +302,57 @@ fn snags(page: &mut String, clip: &ClipProof) {
     page.push_str("</tbody>\n</table></div>\n");
 }
 
+/// How many snags of each kind there are, in a table of its own.
+fn kinds(page: &mut String, clip: &ClipProof) {
+    // Known only where the passes are.
+    let knows_mends = !clip.passes.is_empty();
+    let row = |name: &str, is_own: &dyn Fn(&FoundSnag) -> bool| {
+        let of = |is_counted: &dyn Fn(&FoundSnag) -> bool| {
+            clip.found.iter().filter(|snag| is_own(snag) && is_counted(snag)).count()
+        };
+        let mended =
+            if knows_mends { of(&|snag| clip.mend_of(snag).is_some()).to_string() } else { "–".into() };
+        let state = |state: &'static str| of(&|snag| snag.state() == state);
+        format!(
+            "<tr>{name}<td class=\"n\">{}</td><td class=\"n\">{mended}</td><td class=\"n\">{}</td><td class=\"n\">{}</td>\
+             <td class=\"n\">{}</td><td class=\"n\">{}</td></tr>\n",
+            of(&|_| true),
+            state("gone"),
+            state("left"),
+            state("meant"),
+            clip.new.iter().filter(|snag| is_own(snag)).count(),
+        )
+    };
+    page.push_str(
+        "<table class=\"kinds\">\n<thead><tr><th>Kind</th><th class=\"n\">Found</th><th class=\"n\">Mended</th><th class=\"n\">Gone</th>\
+         <th class=\"n\">Left</th><th class=\"n\">Meant</th><th class=\"n\">New</th></tr></thead>\n<tbody>\n",
+    );
+    for kind in SnagKind::ALL {
+        if clip.found.iter().chain(&clip.new).any(|snag| snag.kind == kind) {
+            let name = format!("<td class=\"kind\"><b class=\"letter\">{}</b> {kind}</td>", kind.letter());
+            page.push_str(&row(&name, &|snag| snag.kind == kind));
+        }
+    }
+    page.push_str("</tbody>\n<tfoot>\n");
+    page.push_str(&row("<th scope=\"row\">All</th>", &|_| true));
+    page.push_str("</tfoot>\n</table>\n");
+}
+
+/// What a snag is, without the name of its joint where that comes first: it has a column of its own.
+fn without_joint(snag: &FoundSnag) -> &str {
+    let rest = snag.text.strip_prefix(snag.joint.as_str()).and_then(|rest| rest.strip_prefix(' '));
+    rest.unwrap_or(&snag.text)
+}
+
 fn pictures(page: &mut String, pictures: &[SheetPicture]) {
     let encode = |png: &[u8]| base64::engine::general_purpose::STANDARD.encode(png);
     for picture in pictures {
         let (title, caption) = (escape(&picture.title), escape(&picture.caption));
+        let told = breakable(&picture.caption);
         let _ = writeln!(
             page,
             "<h3>{title}</h3>\n<figure><picture><source media=\"screen and (prefers-color-scheme: dark)\" srcset=\"data:image/png;base64,{}\">\
-             <img alt=\"{title}: {caption}\" src=\"data:image/png;base64,{}\"></picture><figcaption>{caption}</figcaption></figure>",
+             <img alt=\"{title}: {caption}\" src=\"data:image/png;base64,{}\"></picture><figcaption>{told}</figcaption></figure>",
             encode(&picture.dark_png),
             encode(&picture.light_png),
         );
@@ -357,7 +409,7 @@ fn limits(page: &mut String, proof: &LimitsProof) {
             let _ = writeln!(
                 page,
                 "<tr><td>{}</td>{}{}{}{}</tr>",
-                escape(&row.joint),
+                breakable(&row.joint),
                 cells(&|kept| kept.beyond_limit.to_string()),
                 cells(&|kept| plain(kept.most_beyond_limit_rad.to_degrees(), 1)),
                 cells(&|kept| kept.beyond_fault.to_string()),
@@ -389,7 +441,7 @@ fn joint_table(page: &mut String, rows: &[&JointMeasure]) {
             page,
             "<tr><td>{}</td><td class=\"n\">{}</td><td class=\"n\">{when}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{keys}</td>\
              <td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td></tr>",
-            escape(&joint.label),
+            breakable(&joint.label),
             small(joint.change.value.to_degrees()),
             small(joint.mean_rad.to_degrees()),
             small(joint.p95_rad.to_degrees()),
@@ -414,7 +466,7 @@ fn tips(page: &mut String, measurement: &Measurement) {
         let _ = writeln!(
             page,
             "<tr><td>{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td><td class=\"n\">{}</td></tr>",
-            escape(&tip.label),
+            breakable(&tip.label),
             significant(tip.moved.value),
             at(tip.moved),
             significant(tip.mean)
@@ -497,6 +549,15 @@ fn file_name(path: &str) -> &str {
     path.rsplit(['/', '\\']).next().unwrap_or(path)
 }
 
+/// Text that a browser shows as it is, and may break behind what joins the parts of a name.
+pub(super) fn breakable(text: &str) -> String {
+    let mut safe = escape(text);
+    for joint in ["_", ":", "|"] {
+        safe = safe.replace(joint, &format!("{joint}<wbr>"));
+    }
+    safe
+}
+
 /// Text that a browser shows as it is.
 pub(super) fn escape(text: &str) -> String {
     let mut safe = String::with_capacity(text.len());
@@ -530,5 +591,6 @@ mod tests {
     #[test]
     fn names_from_files_cannot_become_markup() {
         assert_eq!(escape("<b>\"A&B\"</b>"), "&lt;b&gt;&quot;A&amp;B&quot;&lt;/b&gt;");
+        assert_eq!(breakable("rig:<L>_'arm'|up"), "rig:<wbr>&lt;L&gt;_<wbr>&#39;arm&#39;|<wbr>up");
     }
 }
