@@ -44,10 +44,11 @@ const THIRD: f64 = 4.472_136;
 
 /// The span with the ends that the keys which are `free` make likely.
 pub(super) fn fitted(row: &Row<'_>, mut span: Span, free: &Range<usize>) -> Span {
-    // Each end tells how much of the span the other one may count on.
+    // Each end tells how much of the span the other one may count on. Spans that touch or overlap leave no room.
     for _ in 0..2 {
-        span.last = End { row, span, room: free.end - 1 - span.last, is_before: false }.fitted();
-        span.first = End { row, span, room: span.first - free.start, is_before: true }.fitted();
+        let (before, after) = (span.first.saturating_sub(free.start), free.end.saturating_sub(span.last + 1));
+        span.last = End { row, span, room: after, is_before: false }.fitted();
+        span.first = End { row, span, room: before, is_before: true }.fitted();
     }
     span
 }
