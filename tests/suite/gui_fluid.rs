@@ -26,9 +26,38 @@ impl Desk {
     }
 
     fn pixels(&mut self) -> Vec<u32> {
-        let (meshes, mut pixels) = (self.headless.tessellate(), Vec::new());
-        self.headless.paint(&meshes, &mut pixels);
-        pixels
+        let meshes = self.headless.tessellate();
+        self.headless.paint(&meshes).to_vec()
+    }
+}
+
+#[test]
+fn a_window_drawn_frame_by_frame_looks_like_one_drawn_once() {
+    let steps = [
+        Command::Scrub(0.4),
+        Command::Do(Action::NextSnag),
+        Command::Scrub(0.9),
+        Command::Do(Action::Mend),
+        Command::ChooseJoint(Some(3)),
+        Command::Do(Action::Light),
+        Command::Do(Action::Undo),
+        Command::Do(Action::Play),
+        Command::Scrub(1.3),
+    ];
+    let step = |desk: &mut Desk, step: &Command, seen: &mut dyn FnMut(&mut Desk)| {
+        desk.window.ask(step.clone());
+        for _ in 0..3 {
+            desk.frame();
+            seen(desk);
+        }
+    };
+    let mut each = Desk::new();
+    for (number, next) in steps.iter().enumerate() {
+        let mut pixels = Vec::new();
+        step(&mut each, next, &mut |desk| pixels = desk.pixels());
+        let mut once = Desk::new();
+        steps[..=number].iter().for_each(|own| step(&mut once, own, &mut |_| ()));
+        assert!(pixels == once.pixels(), "after {next:?}");
     }
 }
 

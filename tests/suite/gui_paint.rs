@@ -4,6 +4,7 @@ use egui::epaint::{ImageDelta, Primitive, Vertex, WHITE_UV};
 use egui::{
     ClippedPrimitive, Color32, ColorImage, Mesh, Pos2, Rect, TextureId, TextureOptions, TexturesDelta, pos2,
 };
+use proptest::prelude::*;
 use turnwright::app::Screen;
 use turnwright::app::paint::{Canvas, Headless, Painter, picture_of};
 
@@ -18,11 +19,18 @@ const IMAGE: TextureId = TextureId::Managed(1);
 struct Easel {
     painter: Painter,
     pixels: Vec<u32>,
+    width: usize,
+    holds_last: bool,
 }
 
 impl Easel {
     fn new() -> Self {
-        let mut easel = Self { painter: Painter::new(1), pixels: vec![0; WIDTH * HEIGHT] };
+        Self::with_width(WIDTH)
+    }
+
+    fn with_width(width: usize) -> Self {
+        let pixels = vec![0; width * HEIGHT];
+        let mut easel = Self { painter: Painter::new(1), pixels, width, holds_last: false };
         easel
             .set(ATLAS, ImageDelta::full(ColorImage::filled([2, 2], Color32::WHITE), TextureOptions::LINEAR));
         easel
@@ -44,12 +52,17 @@ impl Easel {
             .iter()
             .map(|mesh| ClippedPrimitive { clip_rect, primitive: Primitive::Mesh(mesh.clone()) })
             .collect();
-        let canvas = Canvas { pixels: &mut self.pixels, width: WIDTH, height: HEIGHT };
+        let canvas = Canvas {
+            pixels: &mut self.pixels,
+            width: self.width,
+            height: HEIGHT,
+            holds_last: self.holds_last,
+        };
         self.painter.paint(canvas, pixels_per_point, &primitives, BACKGROUND);
     }
 
     fn pixel(&self, x: usize, y: usize) -> Color32 {
-        let [alpha, red, green, blue] = self.pixels[y * WIDTH + x].to_be_bytes();
+        let [alpha, red, green, blue] = self.pixels[y * self.width + x].to_be_bytes();
         assert_eq!(alpha, 255, "the window is opaque at {x}, {y}");
         Color32::from_rgb(red, green, blue)
     }
@@ -319,6 +332,100 @@ fn the_picture_is_the_same_for_one_two_and_four_threads() {
 fn a_screen_can_be_drawn_without_a_display() {
     let picture = picture_of(|_| Box::new(Sampler), egui::vec2(300.0, 260.0), 1.0);
     crate::golden::check("gui_sampler", &picture);
+}
+
+/// Pixels across that make several tiles.
+const WIDE: usize = 300;
+
+#[test]
+fn only_what_has_changed_is_drawn_again() {
+    let (near, far) = (rect(2.0, 2.0, 30.0, 20.0), rect(200.0, 2.0, 220.0, 60.0));
+    let mut easel = Easel::with_width(WIDE);
+    easel.draw(&[solid(near, Color32::RED), solid(far, Color32::GREEN)]);
+    // A trace on each, to see where the painter was.
+    let (by_near, by_far) = (5 * WIDE + 5, 40 * WIDE + 210);
+    let trace = |easel: &mut Easel| {
+        easel.holds_last = true;
+        (easel.pixels[by_near], easel.pixels[by_far]) = (7, 7);
+    };
+    trace(&mut easel);
+    easel.draw(&[solid(near, Color32::BLUE), solid(far, Color32::GREEN)]);
+    assert_eq!((easel.pixels[by_near], easel.pixels[by_far]), (0xff00_00ff, 7));
+    // The same pixels in another order are hidden by one another in another way.
+    trace(&mut easel);
+    easel.draw(&[solid(far, Color32::GREEN), solid(near, Color32::BLUE)]);
+    assert_eq!((easel.pixels[by_near], easel.pixels[by_far]), (7, 7), "they touch different tiles");
+    // Another image, as of a letter that is new in the atlas.
+    trace(&mut easel);
+    easel.set(ATLAS, ImageDelta::full(ColorImage::filled([2, 2], Color32::WHITE), TextureOptions::LINEAR));
+    easel.draw(&[solid(far, Color32::GREEN), solid(near, Color32::BLUE)]);
+    assert_eq!((easel.pixels[by_near], easel.pixels[by_far]), (0xff00_00ff, 0xff00_ff00));
+    // A canvas that does not hold the last frame is drawn whole.
+    trace(&mut easel);
+    easel.holds_last = false;
+    easel.draw(&[solid(far, Color32::GREEN), solid(near, Color32::BLUE)]);
+    assert_eq!((easel.pixels[by_near], easel.pixels[by_far]), (0xff00_00ff, 0xff00_ff00));
+}
+
+/// A rectangle, a triangle of three colours, or a tinted image, turned or not.
+fn any_mesh() -> impl Strategy<Value = Mesh> {
+    let place = || (-20.0..320.0_f32, -20.0..90.0_f32).prop_map(|(x, y)| pos2(x, y));
+    let color =
+        || any::<[u8; 4]>().prop_map(|[r, g, b, a]| Color32::from_rgba_unmultiplied(r, g, b, a.max(40)));
+    let upright =
+        (place(), place(), color()).prop_map(|(a, b, color)| solid(Rect::from_two_pos(a, b), color));
+    let corners = prop::array::uniform3((place(), color()));
+    let triangle = corners.prop_map(|corners| triangles(&corners, &[0, 1, 2]));
+    let image = (place(), 1.0..80.0_f32, any::<bool>(), color());
+    let image = image.prop_map(|(at, size, is_whole, tint)| {
+        let at = if is_whole { at.round() } else { at };
+        let mut mesh = Mesh::with_texture(IMAGE);
+        let own = if is_whole { 3.0 } else { size };
+        let uv = Rect::from_min_max(Pos2::ZERO, pos2(1.0, 1.0));
+        mesh.add_rect_with_uv(Rect::from_min_size(at, egui::vec2(own, own)), uv, tint);
+        mesh
+    });
+    prop_oneof![upright, triangle, image]
+}
+
+fn image(shift: u8) -> ImageDelta {
+    let texels = (0..9).map(|i| Color32::from_rgb(i * 20 + shift, 200 - i * 9, shift)).collect();
+    ImageDelta::full(ColorImage::new([3, 3], texels), TextureOptions::LINEAR)
+}
+
+proptest! {
+    #![proptest_config(crate::strategies::same_cases(200))]
+
+    /// Frames that differ in one mesh, in their order, or in an image: drawn over the one before, and drawn whole.
+    #[test]
+    fn what_was_drawn_before_leaves_no_trace(
+        meshes in prop::collection::vec(any_mesh(), 1..12),
+        changes in prop::collection::vec((any::<prop::sample::Index>(), any_mesh(), 0..4), 1..6),
+    ) {
+        let (mut over, mut whole) = (Easel::with_width(WIDE), Easel::with_width(WIDE));
+        let mut meshes = meshes;
+        for easel in [&mut over, &mut whole] {
+            easel.set(IMAGE, image(0));
+            easel.draw(&meshes);
+        }
+        over.holds_last = true;
+        for (which, mesh, how) in changes {
+            let which = which.index(meshes.len());
+            match how {
+                0 => meshes[which] = mesh,
+                1 => meshes.push(mesh),
+                2 => meshes.swap(which, 0),
+                _ => {
+                    let shift = mesh.vertices[0].color.r() / 8;
+                    over.set(IMAGE, image(shift));
+                    whole.set(IMAGE, image(shift));
+                }
+            }
+            over.draw(&meshes);
+            whole.draw(&meshes);
+            prop_assert!(over.pixels == whole.pixels);
+        }
+    }
 }
 
 /// One letter, to see that glyphs land where they should.

@@ -44,6 +44,11 @@ impl Corner {
         self.x_steps == vertical.x_steps && self.y_steps == horizontal.y_steps
     }
 
+    /// The place in one number.
+    pub(super) fn bits(self) -> u64 {
+        u64::from(self.x_steps.cast_unsigned()) << 32 | u64::from(self.y_steps.cast_unsigned())
+    }
+
     pub(super) fn x(self) -> i64 {
         i64::from(self.x_steps)
     }
@@ -59,7 +64,7 @@ pub(super) fn first_pixel(steps: i64) -> i64 {
 }
 
 /// Whole pixels: `left` and `top` belong to the area, `right` and `bottom` do not.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
 pub(super) struct Area {
     pub(super) left: i64,
     pub(super) top: i64,

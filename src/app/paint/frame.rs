@@ -1,4 +1,7 @@
-//! One frame on its way to the picture: meshes cut into shapes, shapes sorted into bands.
+//! One frame on its way to the picture: meshes cut into shapes, shapes sorted into bands, bands cut into tiles.
+//!
+//! Most of a window stays as it was from one frame to the next. So each tile has a mark of all that is drawn into it, and
+//! where the mark is that of the frame before, the pixels stay.
 
 use super::area::Area;
 use super::area::Corner;
@@ -11,9 +14,23 @@ use egui::ClippedPrimitive;
 use egui::Mesh;
 use egui::epaint::Primitive;
 use egui::epaint::Vertex;
+use std::hash::BuildHasher;
+use std::hash::Hasher;
+use std::ops::Range;
 
 /// Rows that one thread takes at a time: enough to be worth the handing over, few enough to spread the work evenly.
 pub(super) const BAND_ROWS: usize = 32;
+
+/// Columns of a tile.
+const TILE_COLUMNS: usize = 64;
+
+/// Marks are made the same way in every run.
+const SEEDS: ahash::RandomState = ahash::RandomState::with_seeds(1, 2, 3, 4);
+
+/// Tiles that `width` pixels across take.
+pub(super) fn n_tiles(width: usize) -> usize {
+    width.div_ceil(TILE_COLUMNS)
+}
 
 /// Lists that are filled anew for each frame, kept for their memory.
 #[derive(Debug, Default)]
@@ -31,7 +48,21 @@ struct Shape {
     layer: u32,
     /// Index of the first of its 3 (or 6) indices in the mesh.
     first: u32,
+    /// The tiles that it may touch, the last one among them.
+    first_tile: u16,
+    last_tile: u16,
     is_rectangle: bool,
+}
+
+impl Shape {
+    fn touches(&self, tiles: &Range<usize>) -> bool {
+        usize::from(self.first_tile) < tiles.end && usize::from(self.last_tile) >= tiles.start
+    }
+
+    /// How many indices of the mesh it takes.
+    fn n_indices(&self) -> usize {
+        if self.is_rectangle { 6 } else { 3 }
+    }
 }
 
 /// What the shapes of one mesh have in common.
@@ -43,6 +74,8 @@ struct Layer<'f> {
     clip: Area,
     /// Index of the corner of its first vertex.
     first_corner: usize,
+    /// Stands for texture and clip in the marks of tiles.
+    mark: u64,
 }
 
 /// A frame, ready to be drawn band by band.
@@ -78,6 +111,7 @@ impl<'f> Frame<'f> {
                 white: texture.sample(0.0, 0.0, texture.filter(0.0)),
                 clip,
                 first_corner: lists.corners.len(),
+                mark: SEEDS.hash_one((mesh.texture_id, texture.version, clip)),
             };
             lists
                 .corners
@@ -89,11 +123,66 @@ impl<'f> Frame<'f> {
         Self { layers, lists }
     }
 
-    /// Draws the shapes of band `i` in order.
-    pub(super) fn draw(&self, band: &mut Band<'_>, i: usize) {
-        let mut taps = Vec::new();
+    /// Draws what has changed of band `i`, whose rows are `pixels` of `width` each: `background`, then its shapes in order.
+    /// `marks` are those of its tiles as `pixels` show them, and become those of this frame.
+    pub(super) fn draw(
+        &self,
+        i: usize,
+        pixels: &mut [u32],
+        width: usize,
+        background: u32,
+        marks: &mut [Option<u64>],
+    ) {
+        let mut changed = vec![false; marks.len()];
+        for ((changed, kept), mark) in changed.iter_mut().zip(marks).zip(self.marks(i, width, background)) {
+            *changed = *kept != Some(mark);
+            *kept = Some(mark);
+        }
+        let mut start = 0;
+        for run in changed.chunk_by(|a, b| a == b) {
+            let tiles = start..start + run.len();
+            start = tiles.end;
+            if run[0] {
+                let columns = tiles.start * TILE_COLUMNS..(tiles.end * TILE_COLUMNS).min(width);
+                let mut band = Band::new(pixels, width, i * BAND_ROWS, columns);
+                band.clear(background);
+                self.draw_tiles(&mut band, i, &tiles);
+            }
+        }
+    }
+
+    /// What stands for all that is drawn into each tile of band `i`: with the order, for one hides another.
+    fn marks(&self, i: usize, width: usize, background: u32) -> Vec<u64> {
+        let mut tiles = vec![SEEDS.hash_one(background); n_tiles(width)];
         for shape in &self.lists.bins[i] {
-            let Layer { mesh, texture, white, clip, first_corner } = &self.layers[shape.layer as usize];
+            let Layer { mesh, first_corner, mark, .. } = &self.layers[shape.layer as usize];
+            let mut hasher = SEEDS.build_hasher();
+            hasher.write_u64(*mark);
+            let first = shape.first as usize;
+            // The last of a rectangle's six indices is its fourth corner; the two before it were there already.
+            for index in [0, 1, 2, 5].into_iter().filter(|index| *index < shape.n_indices()) {
+                let index = mesh.indices[first + index] as usize;
+                let Vertex { uv, color, .. } = mesh.vertices[index];
+                hasher.write_u64(self.lists.corners[first_corner + index].bits());
+                hasher.write_u64(u64::from(uv.x.to_bits()) << 32 | u64::from(uv.y.to_bits()));
+                hasher.write_u32(u32::from_ne_bytes(color.to_array()));
+            }
+            let own = hasher.finish();
+            for mark in &mut tiles[usize::from(shape.first_tile)..=usize::from(shape.last_tile)] {
+                let mut hasher = SEEDS.build_hasher();
+                hasher.write_u64(*mark);
+                hasher.write_u64(own);
+                *mark = hasher.finish();
+            }
+        }
+        tiles
+    }
+
+    /// Draws the shapes of band `i` in order, as far as they touch some of its tiles.
+    fn draw_tiles(&self, band: &mut Band<'_>, i: usize, tiles: &Range<usize>) {
+        let mut taps = Vec::new();
+        for shape in self.lists.bins[i].iter().filter(|shape| shape.touches(tiles)) {
+            let Layer { mesh, texture, white, clip, first_corner, .. } = &self.layers[shape.layer as usize];
             let corners = &self.lists.corners[*first_corner..];
             let vertex = |i: usize| -> (Vertex, Corner) {
                 let index = mesh.indices[shape.first as usize + i] as usize;
@@ -108,7 +197,7 @@ impl<'f> Frame<'f> {
                     continue;
                 }
             }
-            for first in [0, 3].into_iter().take(1 + usize::from(shape.is_rectangle)) {
+            for first in (0..shape.n_indices()).step_by(3) {
                 let three = [vertex(first), vertex(first + 1), vertex(first + 2)];
                 let (vertices, corners) = (three.map(|(vertex, _)| vertex), three.map(|(_, corner)| corner));
                 triangle::draw(band, *clip, texture, *white, vertices, corners);
@@ -125,18 +214,21 @@ impl Layer<'_> {
             let three = [corners[a as usize], corners[b as usize], corners[c as usize]];
             three.into_iter().all(Corner::has_place).then(|| Area::around(three))
         };
-        let mut put = |shape: Shape, area: Option<Area>| {
+        let mut put = |mut shape: Shape, area: Option<Area>| {
             let Some(area) = area.map(|area| area.intersect(self.clip)).filter(|area| !area.is_empty())
             else {
                 return;
             };
+            let tile = |column: i64| (column as usize / TILE_COLUMNS) as u16;
+            (shape.first_tile, shape.last_tile) = (tile(area.left), tile(area.right - 1));
             for bin in &mut bins[area.top as usize / BAND_ROWS..=(area.bottom - 1) as usize / BAND_ROWS] {
                 bin.push(shape);
             }
         };
         let mut first = 0;
         while let Some(&[a, b, c]) = indices.get(first..first + 3) {
-            let shape = Shape { layer, first: first as u32, is_rectangle: false };
+            let shape =
+                Shape { layer, first: first as u32, first_tile: 0, last_tile: 0, is_rectangle: false };
             // egui orders the corners of a rectangle like this. Anything else in this order, such as a piece of a
             // line, has its two triangles sorted one by one.
             if let Some(&[again_c, again_b, d]) = indices.get(first + 3..first + 6)

@@ -1,10 +1,7 @@
 //! Frames of a screen without a display.
 
-use super::Canvas;
-use super::Painter;
-use super::pixel;
+use super::offscreen::Offscreen;
 use crate::app::Screen;
-use crate::raster::Color;
 use crate::raster::Image;
 use egui::Color32;
 use egui::Vec2;
@@ -18,7 +15,7 @@ const MAX_FRAMES: usize = 60;
 /// A window without a display: runs a screen frame by frame on a clock of its own and draws the last frame.
 pub struct Headless {
     ctx: egui::Context,
-    painter: Painter,
+    offscreen: Offscreen,
     size_points: Vec2,
     pixels_per_point: f32,
     time_secs: f64,
@@ -41,7 +38,7 @@ impl Headless {
     pub fn new(size_points: Vec2, pixels_per_point: f32, n_threads: usize) -> Self {
         Self {
             ctx: egui::Context::default(),
-            painter: Painter::new(n_threads),
+            offscreen: Offscreen::new(n_threads),
             size_points,
             pixels_per_point,
             time_secs: 0.0,
@@ -70,7 +67,7 @@ impl Headless {
             screen.logic(ui.ctx());
             screen.ui(ui);
         });
-        self.painter.update_textures(&mut output.textures_delta);
+        self.offscreen.painter.update_textures(&mut output.textures_delta);
         self.shapes = output.shapes;
         let root = output.viewport_output.get(&egui::ViewportId::ROOT);
         self.repaint_delay = root.map_or(std::time::Duration::MAX, |root| root.repaint_delay);
@@ -102,13 +99,10 @@ impl Headless {
         self.ctx.tessellate(std::mem::take(&mut self.shapes), self.pixels_per_point)
     }
 
-    /// Draws meshes onto `pixels` (`0xAARRGGBB`, row by row), which get the size of the window.
-    pub fn paint(&mut self, primitives: &[egui::ClippedPrimitive], pixels: &mut Vec<u32>) {
-        let size = (self.size_points * self.pixels_per_point).round();
-        let (width, height) = (size.x as usize, size.y as usize);
-        pixels.resize(width * height, 0);
-        let canvas = Canvas { pixels, width, height };
-        self.painter.paint(canvas, self.pixels_per_point, primitives, background(&self.ctx));
+    /// Draws meshes in the size of the window, as the window does: only what is not as in the frame drawn before. Gives
+    /// the pixels (`0xAARRGGBB`, row by row).
+    pub fn paint(&mut self, primitives: &[egui::ClippedPrimitive]) -> &[u32] {
+        self.offscreen.paint(self.size_points, self.pixels_per_point, primitives, background(&self.ctx))
     }
 
     /// How many triangles the last frame is made of: what a frame costs, whatever else the machine does.
@@ -123,7 +117,8 @@ impl Headless {
     /// Draws the last frame.
     pub fn picture(&mut self) -> Image {
         let primitives = self.ctx.tessellate(self.shapes.clone(), self.pixels_per_point);
-        draw(&mut self.painter, self.size_points, self.pixels_per_point, &primitives, background(&self.ctx))
+        self.paint(&primitives);
+        self.offscreen.image()
     }
 }
 
@@ -142,23 +137,4 @@ pub fn picture_of(
 /// What shows where the screen draws nothing.
 pub(crate) fn background(ctx: &egui::Context) -> Color32 {
     ctx.global_style().visuals.panel_fill
-}
-
-/// Draws meshes onto a fresh picture.
-pub(super) fn draw(
-    painter: &mut Painter,
-    size_points: Vec2,
-    pixels_per_point: f32,
-    primitives: &[egui::ClippedPrimitive],
-    background: Color32,
-) -> Image {
-    let size = (size_points * pixels_per_point).round();
-    let mut image = Image::new(size.x as usize, size.y as usize, Color::TRANSPARENT);
-    let (width, height) = (image.width(), image.height());
-    let mut pixels = vec![0; width * height];
-    painter.paint(Canvas { pixels: &mut pixels, width, height }, pixels_per_point, primitives, background);
-    for (to, from) in image.pixels_mut().iter_mut().zip(pixels) {
-        *to = pixel::unpack_rgba(from);
-    }
-    image
 }

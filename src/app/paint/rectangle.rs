@@ -52,7 +52,8 @@ impl Rectangle {
 
     /// Draws the part inside `clip` and the band.
     pub(super) fn draw(&self, band: &mut Band<'_>, clip: Area, texture: &Texture, taps: &mut Vec<Tap>) {
-        let area = self.area().intersect(clip).intersect(band.area());
+        let whole = self.area().intersect(clip);
+        let area = whole.intersect(band.area());
         if area.is_empty() {
             return;
         }
@@ -76,11 +77,14 @@ impl Rectangle {
         }
         let across = Axis::new(self.from.x(), self.to.x(), self.from_uv.x, self.to_uv.x, texture.width);
         let down = Axis::new(self.from.y(), self.to.y(), self.from_uv.y, self.to_uv.y, texture.height);
+        // Asked of the whole of it, so that the pixels are the same wherever bands begin.
         let start = (
-            across.copy_start(area.left, area.right, texture.width),
-            down.copy_start(area.top, area.bottom, texture.height),
+            across.copy_start(whole.left, whole.right, texture.width),
+            down.copy_start(whole.top, whole.bottom, texture.height),
         );
         if let (Some(column), Some(row)) = start {
+            let (column, row) =
+                (column + (area.left - whole.left) as usize, row + (area.top - whole.top) as usize);
             copy(band, area, texture, column, row, tint);
         } else {
             stretch(band, area, texture, &across, &down, tint, taps);

@@ -22,6 +22,8 @@ pub(super) struct Texture {
     pub(super) texels: Vec<u32>,
     /// No texel lets anything through.
     pub(super) is_opaque: bool,
+    /// Another one after each change, and never that of another texture.
+    pub(super) version: u64,
     options: TextureOptions,
 }
 
@@ -30,12 +32,13 @@ const PIECE: usize = 2048;
 
 impl Texture {
     fn new() -> Self {
-        Self { width: 1, height: 1, texels: vec![0], is_opaque: false, options: TextureOptions::default() }
+        let options = TextureOptions::default();
+        Self { width: 1, height: 1, texels: vec![0], is_opaque: false, version: 0, options }
     }
 
     fn replace(&mut self, image: &ColorImage) {
         if image.width() == 0 || image.height() == 0 {
-            *self = Self::new();
+            *self = Self { version: self.version, options: self.options, ..Self::new() };
             return;
         }
         self.width = image.width();
@@ -139,6 +142,8 @@ pub(super) struct Textures {
     by_id: HashMap<TextureId, Texture>,
     /// Freed with the last changes. The frame those came with may still draw them.
     leaving: Vec<TextureId>,
+    /// Changes so far.
+    changes: u64,
 }
 
 impl Textures {
@@ -155,6 +160,8 @@ impl Textures {
             let texture = self.by_id.entry(id).or_insert_with(Texture::new);
             for ImageDelta { image: ImageData::Color(image), options, pos } in changes {
                 texture.options = options;
+                self.changes += 1;
+                texture.version = self.changes;
                 match pos {
                     Some(corner) => texture.patch(&image, corner),
                     None => texture.replace(&image),

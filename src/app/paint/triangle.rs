@@ -2,7 +2,7 @@
 //!
 //! A pixel belongs to a triangle when its centre does. A centre on a shared edge belongs to the triangle whose left or
 //! top edge it is (the rule of graphics hardware), so meshes have neither gaps nor seams drawn twice. All of this is in
-//! whole numbers: the result does not depend on where bands begin.
+//! whole numbers, and colours run from where a row of the triangle begins: the result does not depend on where bands do.
 
 use super::area::Area;
 use super::area::Corner;
@@ -26,21 +26,23 @@ pub(super) fn draw(
     vertices: [Vertex; 3],
     corners: [Corner; 3],
 ) {
-    let area = Area::around(corners).intersect(clip).intersect(band.area());
+    let whole = Area::around(corners).intersect(clip);
+    let area = whole.intersect(band.area());
     if area.is_empty() {
         return;
     }
     let Some(outline) = Outline::new(vertices, corners) else { return };
     let mut paint = None;
     for row in area.top..area.bottom {
-        let (left, right) = outline.span(row, area.left, area.right);
-        if left < right {
+        let (left, right) = outline.span(row, whole.left, whole.right);
+        let (from, to) = (left.max(area.left), right.min(area.right));
+        if from < to {
             // Many triangles of thin lines pass between all centres and need no paint.
             let paint = paint.get_or_insert_with(|| Paint::new(&outline, texture, white));
             if matches!(paint, Paint::Plain(0)) {
                 return;
             }
-            paint.draw(band.run(row, left, right), left, row, texture);
+            paint.draw(band.run(row, from, to), from - left, left, row, texture);
         }
     }
 }
@@ -215,12 +217,12 @@ impl Paint {
         Self::Blend(color_slopes(outline, texel))
     }
 
-    /// Draws onto the pixels of one row from `left` on.
-    fn draw(&self, run: &mut [u32], left: i64, row: i64, texture: &Texture) {
+    /// Draws onto the pixels of one row, which begins at `left`; `run` are its pixels after the first `skipped`.
+    fn draw(&self, run: &mut [u32], skipped: i64, left: i64, row: i64, texture: &Texture) {
         match self {
             Self::Plain(source) => pixel::fill(run, *source),
             Self::Blend(slopes) => {
-                let mut colors = Colors::new(slopes, left, row);
+                let mut colors = Colors::new(slopes, left, row).skip(skipped);
                 for below in run {
                     *below = pixel::over(*below, colors.next());
                 }
@@ -228,8 +230,8 @@ impl Paint {
             Self::Image { across, down, tint, filter } => {
                 let (x, y) = (across.at(left, row) as f32, down.at(left, row) as f32);
                 let (x_step, y_step) = (across.across as f32, down.across as f32);
-                let mut colors = Colors::new(tint, left, row);
-                for (i, below) in run.iter_mut().enumerate() {
+                let mut colors = Colors::new(tint, left, row).skip(skipped);
+                for (i, below) in (skipped..).zip(run) {
                     let texel = texture.sample(x + x_step * i as f32, y + y_step * i as f32, *filter);
                     *below = pixel::over(*below, pixel::multiply(colors.next(), texel));
                 }
@@ -260,6 +262,14 @@ impl Colors {
         let value = slopes.map(|slope| (slope.at(left, row) + Self::ONE * 0.5) as i32);
         // A step beyond the range belongs to a triangle narrower than a pixel, where none is taken.
         Self { value, step: slopes.map(|slope| slope.across as i32) }
+    }
+
+    /// As after so many of [`Self::next`].
+    fn skip(mut self, pixels: i64) -> Self {
+        for (value, step) in self.value.iter_mut().zip(self.step) {
+            *value = value.wrapping_add(step.wrapping_mul(pixels as i32));
+        }
+        self
     }
 
     fn next(&mut self) -> u32 {

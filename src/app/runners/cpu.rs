@@ -350,7 +350,10 @@ impl Running {
         let lost = |_| refused("the display takes no pictures");
         self.surface.resize(width, height).map_err(lost)?;
         let mut pixels = self.surface.buffer_mut().map_err(lost)?;
-        let canvas = Canvas { pixels: &mut pixels, width: size.width as usize, height: size.height as usize };
+        // Displays that take turns between several buffers give one that is older, or none yet.
+        let holds_last = pixels.age() == 1;
+        let (width, height) = (size.width as usize, size.height as usize);
+        let canvas = Canvas { pixels: &mut pixels, width, height, holds_last };
         self.painter.paint(canvas, pixels_per_point, primitives, background);
         self.window.pre_present_notify();
         pixels.present().map_err(lost)
