@@ -108,7 +108,7 @@ fn rotors<const PROPER: bool>(
             }
         }
         for row in 0..ROWS {
-            sines[axis][row] = rests[row] * squares[row].sine_over_angle();
+            sines[axis][row] = squares[row].times_sine_over_angle(rests[row]);
         }
         for row in 0..ROWS {
             cosines[axis][row] = squares[row].cosine();

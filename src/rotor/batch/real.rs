@@ -35,8 +35,9 @@ pub trait Polynomials:
     fn square_over_rest(self) -> (Self, Self);
     /// Numerator and denominator of `θ/sin θ` of `d = cos θ`, 0 to 1.
     fn angle_over_sine(self) -> (Self, Self);
-    /// `sin √y/√y`, 0 to (π/2)².
-    fn sine_over_angle(self) -> Self;
+    /// `factor · sin √y/√y`, 0 to (π/2)²: what is beyond `factor` itself is added last, so that it is off by one rounding and
+    /// little more.
+    fn times_sine_over_angle(self, factor: Self) -> Self;
     /// The same where one sine is asked and not the sum of two: the sine within 1.1e-16 in `f64`, with a power less.
     fn short_sine(self) -> Self;
     /// `cos √y`, 0 to (π/2)².
@@ -75,8 +76,9 @@ macro_rules! polynomials {
                 fitted::$angle.at(self)
             }
             #[inline(always)]
-            fn sine_over_angle(self) -> Self {
-                polynomial(&fitted::$sine, self)
+            fn times_sine_over_angle(self, factor: Self) -> Self {
+                let [_one, beyond @ ..] = fitted::$sine;
+                factor + factor * (self * polynomial(&beyond, self))
             }
             #[inline(always)]
             fn short_sine(self) -> Self {

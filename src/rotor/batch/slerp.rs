@@ -248,11 +248,11 @@ fn short_way<F: Real>(
     }
     for row in 0..SLERP_ROWS {
         let back = F::ONE - t[row];
-        from[row] = back * (back * back * squares[row]).sine_over_angle();
+        from[row] = (back * back * squares[row]).times_sine_over_angle(back);
         stretches[row] = stretches[row].root();
     }
     for row in 0..SLERP_ROWS {
-        to[row] = t[row] * (t[row] * t[row] * squares[row]).sine_over_angle();
+        to[row] = (t[row] * t[row] * squares[row]).times_sine_over_angle(t[row]);
     }
     for row in 0..SLERP_ROWS {
         let stretch = stretches[row];
