@@ -35,10 +35,14 @@ pub fn sheet_html(sheet: &Sheet) -> String {
         escape(&title)
     );
     head(&mut page, sheet);
-    for clip in &sheet.clips {
-        clip_section(&mut page, clip, sheet.clips.len() > 1);
+    let foot = foot(sheet);
+    for (number, clip) in (1..).zip(&sheet.clips) {
+        let is_last = number == sheet.clips.len();
+        clip_section(&mut page, clip, sheet.clips.len() > 1, is_last.then_some(&foot));
     }
-    foot(&mut page, sheet);
+    if sheet.clips.is_empty() {
+        page.push_str(&foot);
+    }
     page.push_str("</main>\n</body>\n</html>\n");
     page
 }
@@ -66,7 +70,8 @@ fn head(page: &mut String, sheet: &Sheet) {
     page.push_str("</header>\n");
 }
 
-fn clip_section(page: &mut String, clip: &ClipProof, is_one_of_several: bool) {
+/// `foot` comes after the last clip: with the table before it, so that it does not stand alone on a printed page.
+fn clip_section(page: &mut String, clip: &ClipProof, is_one_of_several: bool, foot: Option<&String>) {
     let measurement = &clip.measurement;
     page.push_str("<section>\n");
     if is_one_of_several {
@@ -95,8 +100,10 @@ fn clip_section(page: &mut String, clip: &ClipProof, is_one_of_several: bool) {
         limits(page, proof);
     }
     joints(page, measurement);
+    page.push_str("<div class=\"end\">\n");
     tips(page, measurement);
-    page.push_str("</section>\n");
+    page.push_str(foot.map_or("", String::as_str));
+    page.push_str("</div>\n</section>\n");
 }
 
 /// What came in, in a line.
@@ -475,20 +482,19 @@ fn tips(page: &mut String, measurement: &Measurement) {
     page.push_str("</tbody>\n</table></div>\n");
 }
 
-fn foot(page: &mut String, sheet: &Sheet) {
+fn foot(sheet: &Sheet) -> String {
     let what = if sheet.is_computed {
         "the results of a scene, worked out and not read from a written file"
     } else {
         "the written file as read back"
     };
     let times: usize = sheet.clips.iter().map(|clip| clip.measurement.times_compared).sum();
-    let _ = write!(
-        page,
+    format!(
         "<footer>\n<p>Measured on {what}, played as its format says, at {times} times: every frame and key of both files and the middles \
          between. Change: the turn from a joint's orientation before to that after, relative to its parent. Ends of limbs: distance in the scene, in the file's lengths. \
          Fastest turn and jerk: differences from frame to frame.</p>\n<p class=\"caution\">{CAUTION}</p>\n<p>Turnwright {}</p>\n</footer>\n",
         env!("CARGO_PKG_VERSION")
-    );
+    )
 }
 
 fn at(peak: Peak) -> String {
