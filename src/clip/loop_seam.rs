@@ -5,7 +5,7 @@ use glam::DVec3;
 use crate::rotor::{Bivector, Rotor, SwingTwist};
 use crate::skeleton::JointKind;
 
-use super::Clip;
+use super::{Clip, PathKind, RotationTrack, VectorPath};
 
 /// A root that has turned by more than this about the upright at the end is on a curve, and goes on so in the next round.
 const CURVE_RAD: f64 = 15.0 / 180.0 * std::f64::consts::PI;
@@ -57,6 +57,29 @@ impl LoopSeam {
     ///
     /// Of a root the way along the ground stays, and its turn about the upright where it is large enough to be meant.
     pub fn of(clip: &Clip, joint: usize, is_first_again: bool, up: DVec3) -> Self {
+        Self::told(clip, joint, is_first_again, false, up)
+    }
+
+    /// The same for a last frame that stands for the first of the next round, with the rates that the curves themselves have
+    /// there where they are smooth: those that have to meet for the path to go on without a bend. Steps of frames, as [`Self::of`]
+    /// looks at them, tell such a rate roughly.
+    pub fn in_own_rates(clip: &Clip, joint: usize, up: DVec3) -> Self {
+        Self::told(clip, joint, true, true, up)
+    }
+
+    /// The rate of a track at its start less that at its end, in radians a second on the bone side, where both ends are smooth
+    /// curves; else `None`.
+    pub fn own_turn_rate(track: &RotationTrack) -> Option<Bivector> {
+        let segments = track.keys.len().checked_sub(1).filter(|&segments| segments > 0)?;
+        let is_curve = |segment: usize| match track.paths.of(segment) {
+            PathKind::Cubic => track.tangents.is_some(),
+            kind => matches!(kind, PathKind::Squad | PathKind::Spline | PathKind::BSpline),
+        };
+        let rate = |segment: usize, share: f64| track.segment_motion(segment, share, None).rate;
+        (is_curve(0) && is_curve(segments - 1)).then(|| rate(0, 0.0) - rate(segments - 1, 1.0))
+    }
+
+    fn told(clip: &Clip, joint: usize, is_first_again: bool, in_own_rates: bool, up: DVec3) -> Self {
         let grid = &clip.grid;
         let Some(last) = grid.count().checked_sub(1).filter(|&last| last > 0) else { return Self::default() };
         let steps = STEPS.min(last);
@@ -84,12 +107,19 @@ impl LoopSeam {
                 }
             }
             seam.turn = (next.reverse() * curve.reverse() * first).plane_angles();
-            seam.turn_rate = (start - end) * (1.0 / secs);
+            let own = if in_own_rates { Self::own_turn_rate(track) } else { None };
+            seam.turn_rate = own.unwrap_or((start - end) * (1.0 / secs));
         }
         if let Some(track) = clip.joints.get(joint).and_then(|tracks| tracks.translation.as_ref()) {
             let at = |frame: usize| track.at(grid.time(frame)).unwrap_or_default();
             let step = |frame: usize| at(frame + 1) - at(frame);
             let [end, start] = rates((0..steps).map(|i| step(last - 1 - i)), (0..steps).map(step), before);
+            let tangents =
+                track.tangents.as_ref().filter(|_| in_own_rates && track.path == VectorPath::Cubic);
+            let [end, start] = match tangents.map(|tangents| (tangents.last(), tangents.first())) {
+                Some((Some([end, _]), Some([_, start]))) => [*end * secs, *start * secs],
+                _ => [end, start],
+            };
             // On a curve the start's way is turned into the end's.
             let start = curve.reverse().apply(start);
             let missing = at(0) - (at(last) + (end + start) * (0.5 * before));

@@ -3,8 +3,8 @@
 use glam::DVec3;
 
 use crate::clip::{
-    Clip, FileAngles, JointTracks, LoopSeam, PathKind, Paths, RotationTrack, Stored, Times, VectorTrack,
-    ends_on_first_pose,
+    Clip, FileAngles, JointTracks, LoopSeam, PathKind, Paths, RotationTrack, Segments, Stored, Times,
+    VectorTrack, ends_on_first_pose,
 };
 use crate::rotor::{Bivector, Rotor};
 use crate::snag::{LoopClose, LoopForm};
@@ -15,8 +15,9 @@ use super::draft::Draft;
 const WINDOW_SECS: f64 = 0.25;
 const WINDOW_RATE: f64 = 60.0 / 180.0 * std::f64::consts::PI;
 
-/// Rates are brought to meet within so long on each side.
+/// Rates are brought to meet within so long on each side, and over so many keys: with fewer there is none that could be moved.
 const RATE_SECS: f64 = 0.2;
+const RATE_KEYS: f64 = 4.0;
 
 /// Spread over the whole clip, no more than this is hidden.
 const SPREAD_RAD: f64 = 10.0 / 180.0 * std::f64::consts::PI;
@@ -99,12 +100,12 @@ fn closed_by_its_ends(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> O
     let track = clip.rotation(joint)?;
     let count = track.keys.len();
     let is_whole = track.file_angles().is_none_or(|angles| angles.axes.len() == 3);
-    let passes_keys = matches!(track.paths, Paths::Every(kind) if kind != PathKind::BSpline);
-    let is_key_by_key = passes_keys && track.tangents.is_none() && track.times == clip.grid.times;
-    if !is_key_by_key || !is_whole || count < 4 * END_FRAMES {
+    let is_curve = how.is_first_again && LoopSeam::own_turn_rate(track).is_some();
+    if track.tangents.is_some() || is_curve || !is_whole || count < 4 * END_FRAMES {
         return None;
     }
-    let ends: Vec<usize> = (0..END_FRAMES).chain(count - END_FRAMES..count).collect();
+    let [low, high] = end_keys(track, clip)?;
+    let ends: Vec<usize> = (0..low).chain(high..count).collect();
     if ends.iter().any(|&key| track.keys[key].try_normalize().is_none()) {
         return None;
     }
@@ -139,6 +140,24 @@ fn closed_by_its_ends(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> O
     Some(closed)
 }
 
+/// How many keys from the first on, and from which one on to the last, tell the poses at the frames at both ends; `None` where they do not
+/// tell them, or where little lies between.
+fn end_keys(track: &RotationTrack, clip: &Clip) -> Option<[usize; 2]> {
+    let count = track.keys.len();
+    let passes_keys = matches!(track.paths, Paths::Every(kind) if kind != PathKind::BSpline);
+    if passes_keys && track.times == clip.grid.times {
+        return Some([END_FRAMES, count - END_FRAMES]);
+    }
+    // As in glTF, where each track has times of its own: between keys a pose is told by those beside it.
+    let is_straight = matches!(track.paths, Paths::Every(PathKind::Slerp | PathKind::Hold))
+        && track.segments == Segments::default();
+    let last = clip.grid.count().checked_sub(END_FRAMES)?;
+    let (since, until) = (clip.grid.time(END_FRAMES - 1), clip.grid.time(last));
+    let low = (0..count).find(|&key| track.times.at(key) >= since)? + 1;
+    let high = (0..count).rev().find(|&key| track.times.at(key) <= until)?;
+    (is_straight && low >= 2 && low + 2 * END_FRAMES <= high).then_some([low, high])
+}
+
 /// Some keys of a track by themselves.
 fn of_keys(track: &RotationTrack, keys: &[usize]) -> RotationTrack {
     let stored = match &track.stored {
@@ -151,7 +170,10 @@ fn of_keys(track: &RotationTrack, keys: &[usize]) -> RotationTrack {
     };
     let times: Vec<f64> = keys.iter().map(|&key| track.times.at(key)).collect();
     let rotors: Vec<Rotor> = keys.iter().map(|&key| track.keys[key]).collect();
-    RotationTrack { stored, ..RotationTrack::from_rotors(Times::Listed(times.into()), rotors) }
+    // At keys all other kinds are where the short way is.
+    let is_held = track.paths == Paths::Every(PathKind::Hold);
+    let paths = Paths::Every(if is_held { PathKind::Hold } else { PathKind::Slerp });
+    RotationTrack { stored, paths, ..RotationTrack::from_rotors(Times::Listed(times.into()), rotors) }
 }
 
 /// What closes the loop of a joint.
@@ -167,7 +189,11 @@ struct Change {
 impl Change {
     /// `None` for a clip without a step.
     fn new(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> Option<Self> {
-        let seam = LoopSeam::of(clip, joint, how.is_first_again, up);
+        let seam = if how.is_first_again {
+            LoopSeam::in_own_rates(clip, joint, up)
+        } else {
+            LoopSeam::of(clip, joint, false, up)
+        };
         let last = clip.grid.count().checked_sub(1).filter(|&last| last > 0)?;
         let (from, to) = (clip.grid.time(0), clip.grid.time(last));
         let step = (to - from) / last as f64;
@@ -181,7 +207,8 @@ impl Change {
         let (first, last) = times.span().unwrap_or((self.from, self.to));
         let (from, to) = (self.from.max(first.min(self.to)), self.to.min(last.max(self.from)));
         let beyond = if self.how.is_first_again { 0.0 } else { self.step };
-        Shape { from, secs: (to - from).max(self.step) + beyond, how: self.how }
+        let key_secs = times.median_step().unwrap_or(self.step);
+        Shape { from, secs: (to - from).max(self.step) + beyond, how: self.how, key_secs }
     }
 
     /// By what a pose is turned on the bone side.
@@ -191,12 +218,36 @@ impl Change {
         self.seam.turn * share + lift
     }
 
+    /// The derivative of the four numbers of that turn by time, per second.
+    fn turn_rate(&self, shape: &Shape, secs: f64) -> Rotor {
+        /// Radians to each side between which the exponential's slope is told: its square is lost.
+        const SMALL: f64 = 1e-5;
+        let [share, rate] = shape.slopes_at(secs, self.seam.turn.length());
+        let lift = if self.how.with_rate { self.seam.turn_rate * rate } else { Bivector::ZERO };
+        let slope = self.seam.turn * share + lift;
+        let small = SMALL / slope.length().max(SMALL);
+        let near = |sign: f64| Rotor::from_plane_angles(self.turn(shape, secs) + slope * (sign * small));
+        sum(near(1.0), -near(-1.0)).scale(0.5 / small)
+    }
+
+    /// By what a place is moved, and how fast that changes.
+    fn way_rate(&self, shape: &Shape, secs: f64) -> DVec3 {
+        let [share, rate] = shape.slopes_at(secs, 0.0);
+        let lift = if self.how.with_rate { self.seam.place_rate * rate } else { DVec3::ZERO };
+        self.seam.place * share + lift
+    }
+
     /// By what a place is moved.
     fn way(&self, shape: &Shape, secs: f64) -> DVec3 {
         let [share, rate] = shape.at(secs, 0.0);
         let lift = if self.how.with_rate { self.seam.place_rate * rate } else { DVec3::ZERO };
         self.seam.place * share + lift
     }
+}
+
+/// Of the four numbers each.
+fn sum(a: Rotor, b: Rotor) -> Rotor {
+    Rotor::new(a.s + b.s, a.yz + b.yz, a.zx + b.zx, a.xy + b.xy)
 }
 
 fn changed(clip: &Clip, joint: usize, change: &Change) -> Clip {
@@ -214,8 +265,9 @@ fn changed(clip: &Clip, joint: usize, change: &Change) -> Clip {
             if let (Some(tangents), PathKind::Cubic) =
                 (&track.tangents, track.paths.of(key.min(draft.len().saturating_sub(2))))
             {
-                // The rates of the four numbers turn along; what the change itself adds to them is left to the neighbours.
-                let turned = tangents[key].map(|tangent| tangent * by);
+                // The rates of the four numbers turn along, and the change adds its own.
+                let own = track.keys[key] * change.turn_rate(&shape, secs);
+                let turned = tangents[key].map(|tangent| sum(tangent * by, own));
                 draft.set_pose(key, (was * by).normalize(), was);
                 let sign = if draft.keys[key].dot(was * by) < 0.0 { -1.0 } else { 1.0 };
                 draft.set_numbers(key, draft.keys[key], Some(turned.map(|tangent| tangent.scale(sign))));
@@ -237,7 +289,11 @@ fn changed(clip: &Clip, joint: usize, change: &Change) -> Clip {
             .zip(track.keys.iter())
             .map(|(secs, place)| *place + change.way(&shape, secs))
             .collect();
-        let track = VectorTrack { keys: keys.into(), ..track.clone() };
+        let tangents = track.tangents.as_ref().map(|tangents| {
+            let each = track.times.iter().zip(tangents.iter());
+            each.map(|(secs, both)| both.map(|own| own + change.way_rate(&shape, secs))).collect()
+        });
+        let track = VectorTrack { keys: keys.into(), tangents, ..track.clone() };
         let tracks = JointTracks { translation: Some(track), ..(*closed.joints[joint]).clone() };
         closed.joints[joint] = tracks.into();
     }
@@ -250,6 +306,8 @@ struct Shape {
     /// How long a round is.
     secs: f64,
     how: LoopClose,
+    /// The usual time from key to key.
+    key_secs: f64,
 }
 
 impl Shape {
@@ -276,7 +334,7 @@ impl Shape {
     }
 
     fn rate_window(&self) -> f64 {
-        RATE_SECS.min(0.5 * self.secs)
+        RATE_SECS.max(RATE_KEYS * self.key_secs).min(0.5 * self.secs)
     }
 
     /// What share of the difference in pose is added at a time, −½ at the start to ½ at the end; and the seconds by which
@@ -295,6 +353,22 @@ impl Shape {
         let lift = |t: f64| if t < 1.0 { window * t * (1.0 - t) * (1.0 - t) } else { 0.0 };
         // Half the gap is added to the end's rate, half taken from the start's.
         [share, -0.5 * lift(since / window) - 0.5 * lift(until / window)]
+    }
+
+    /// The derivatives of both by time.
+    fn slopes_at(&self, secs: f64, angle_rad: f64) -> [f64; 2] {
+        let (since, until) = self.since_and_until(secs);
+        let share = match self.how.form {
+            LoopForm::Spread => 1.0 / self.secs,
+            LoopForm::Window => {
+                let window = self.window(angle_rad);
+                let slope = |t: f64| if t < 1.0 { 6.0 * t * (t - 1.0) } else { 0.0 };
+                -0.5 * (slope(until / window) + slope(since / window)) / window
+            }
+        };
+        let window = self.rate_window();
+        let lift = |t: f64| if t < 1.0 { (1.0 - t) * (1.0 - 3.0 * t) } else { 0.0 };
+        [share, 0.5 * lift(until / window) - 0.5 * lift(since / window)]
     }
 }
 
@@ -339,6 +413,98 @@ mod tests {
             skeleton: Arc::new(Skeleton::new(joints.to_vec()).unwrap()),
             grid: FrameGrid { times: times.clone(), rate: 60.0 },
             duration_secs: times.span().unwrap().1,
+        }
+    }
+
+    /// The same with the file's own form of glTF: rotors, each track with times of its own, beside the frames.
+    fn with_own_times(clip: &Clip) -> Clip {
+        (0..clip.joints.len()).fold(clip.clone(), |clip, joint| {
+            let track = clip.rotation(joint).unwrap();
+            let count = track.times.len();
+            let secs = |key: usize| match key {
+                0 => track.times.at(0),
+                key if key + 1 == count => track.times.at(key),
+                key => track.times.at(key) + 0.002 * ((key % 3) as f64 - 1.0),
+            };
+            let times: Vec<f64> = (0..count).filter(|key| key % 5 != 3).map(secs).collect();
+            let keys: Vec<Rotor> = times.iter().map(|secs| track.at(*secs)).collect();
+            clip.with_rotation(joint, RotationTrack::from_rotors(Times::Listed(times.into()), keys))
+        })
+    }
+
+    #[test]
+    fn keys_at_times_of_their_own_are_closed_by_the_ends_as_round_after_round() {
+        for (wide_deg, form) in [(4.0, LoopForm::Spread), (50.0, LoopForm::Window)] {
+            for is_first_again in [false, true] {
+                let how = LoopClose { form, is_first_again, with_rate: true };
+                let clip = with_own_times(&clip(400, wide_deg));
+                let rounds = (0..ROUNDS).fold(clip.clone(), |clip, _| round(&clip, 1, how, DVec3::Y));
+                let at_once = closed_by_its_ends(&clip, 1, how, DVec3::Y).unwrap();
+                let [old, new, was] = [&rounds, &at_once, &clip].map(|clip| clip.rotation(1).unwrap());
+                let mut untouched = 0;
+                for (key, old) in old.keys.iter().enumerate() {
+                    assert!(old.turn_to(new.keys[key]) < 1e-14, "{form:?}, key {key}");
+                    untouched += usize::from(new.keys[key] == was.keys[key]);
+                }
+                assert!(untouched > 80 || form == LoopForm::Spread, "{form:?}: {untouched} untouched");
+                let left = LoopSeam::of(&at_once, 1, is_first_again, DVec3::Y);
+                let missed = LoopSeam::of(&clip, 1, is_first_again, DVec3::Y);
+                assert!(left.turn.length() < 1e-3 * missed.turn.length());
+                assert!(left.turn_rate.length() < 0.1 * missed.turn_rate.length());
+            }
+        }
+    }
+
+    /// A file's cubics, with few keys: the curve itself has to go on at the seam as fast as it comes in, and so have places.
+    #[test]
+    fn cubics_meet_in_their_own_rates() {
+        for (wide_deg, form) in [(4.0, LoopForm::Spread), (50.0, LoopForm::Window)] {
+            for (kind, every) in [(PathKind::Cubic, 15), (PathKind::Cubic, 1), (PathKind::Squad, 2)] {
+                let whole = clip(241, wide_deg);
+                let track = whole.rotation(1).unwrap();
+                let kept: Vec<usize> = (0..241).step_by(every).collect();
+                let times: Vec<f64> = kept.iter().map(|&key| track.times.at(key)).collect();
+                let keys: Vec<Rotor> = kept.iter().map(|&key| track.keys[key]).collect();
+                let sparse = RotationTrack::from_rotors(Times::Listed(times.clone().into()), keys);
+                let sparse = sparse.with_path(0..kept.len() - 1, kind).unwrap();
+                let step = times[1] - times[0];
+                let grid =
+                    FrameGrid { times: Times::Even { step_secs: step, count: kept.len() }, rate: 1.0 / step };
+                let mut clip = Clip { grid, ..whole.with_rotation(1, sparse) };
+                let place = |secs: &f64| DVec3::new(*secs, secs * secs, 0.0);
+                let slope = |secs: &f64| [DVec3::new(1.0, 2.0 * secs, 0.0); 2];
+                let places = VectorTrack {
+                    path: crate::clip::VectorPath::Cubic,
+                    tangents: Some(times.iter().map(slope).collect()),
+                    ..VectorTrack::straight(
+                        Times::Listed(times.clone().into()),
+                        times.iter().map(place).collect::<Vec<_>>(),
+                    )
+                };
+                clip.joints[1] =
+                    JointTracks { translation: Some(places), ..(*clip.joints[1]).clone() }.into();
+                let how = LoopClose { form, is_first_again: true, with_rate: true };
+                let closed = close_joint(&clip, 1, how, DVec3::Y);
+                let rates = |clip: &Clip| {
+                    let track = clip.rotation(1).unwrap();
+                    let end = track.segment_motion(track.keys.len() - 2, 1.0, None);
+                    let start = track.segment_motion(0, 0.0, None);
+                    let apart = end.orientation.turn_to(start.orientation);
+                    (apart, (end.rate - start.rate).length())
+                };
+                let ((was_apart, was), (apart, is)) = (rates(&clip), rates(&closed));
+                assert!(was_apart > 0.05 && was > 0.1, "{was_apart} {was}");
+                let most = if kind == PathKind::Cubic { 1e-6 } else { 0.1 * was };
+                assert!(apart < 1e-9 && is < most, "{form:?} {kind:?} every {every}: {apart}, {is} of {was}");
+                if kind == PathKind::Cubic {
+                    let places = closed.joints[1].translation.as_ref().unwrap();
+                    let tangents = places.tangents.as_ref().unwrap();
+                    let last = places.keys.len() - 1;
+                    assert!((places.keys[0] - places.keys[last]).length() < 1e-9);
+                    let missed = (tangents[0][1] - tangents[last][0]).length();
+                    assert!(missed < 1e-9, "{missed}");
+                }
+            }
         }
     }
 
