@@ -30,17 +30,16 @@ pub fn exp<F: Real>(level: Level, angles: Parts<'_, F, 3>, out: PartsMut<'_, F, 
 
 #[inline(always)]
 fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&mut Column<F, ROWS>; 4]) {
-    // (π/2)² and a hair, as far as the polynomials reach.
-    let most = F::narrowed(2.467_402);
+    // π² and a hair, as far as the polynomials reach.
+    let most = F::narrowed(4.0 * 2.467_402);
     let [yz, zx, xy] = angles;
     let (mut squares, mut guards, mut factors) = ([F::ZERO; ROWS], [F::ZERO; ROWS], [F::ZERO; ROWS]);
     for row in 0..ROWS {
-        squares[row] = F::HALF * F::HALF * (yz[row] * yz[row] + zx[row] * zx[row] + xy[row] * xy[row]);
+        squares[row] = yz[row] * yz[row] + zx[row] * zx[row] + xy[row] * xy[row];
         guards[row] = most - squares[row];
     }
     for row in 0..ROWS {
-        out[0][row] = squares[row].cosine();
-        factors[row] = -F::HALF * squares[row].short_sine();
+        (out[0][row], factors[row]) = squares[row].half_turn();
     }
     for part in 0..3 {
         for row in 0..ROWS {

@@ -38,8 +38,9 @@ pub trait Polynomials:
     /// `factor · sin √y/√y`, 0 to (π/2)²: what is beyond `factor` itself is added last, so that it is off by one rounding and
     /// little more.
     fn times_sine_over_angle(self, factor: Self) -> Self;
-    /// The same where one sine is asked and not the sum of two: the sine within 1.1e-16 in `f64`, with a power less.
-    fn short_sine(self) -> Self;
+    /// `cos(α/2)` and `−sin(α/2)/α` of `α²`, 0 to π²: the parts of a rotor that turns by `α`. The sine is within 1.1e-16 in `f64`, with a
+    /// power less than where two are added.
+    fn half_turn(self) -> (Self, Self);
     /// `cos √y`, 0 to (π/2)².
     fn cosine(self) -> Self;
 }
@@ -81,8 +82,20 @@ macro_rules! polynomials {
                 factor + factor * (self * polynomial(&beyond, self))
             }
             #[inline(always)]
-            fn short_sine(self) -> Self {
-                polynomial(&fitted::$short_sine, self)
+            fn half_turn(self) -> (Self, Self) {
+                /// The factors for a fourth of the variable, and `times` as much: powers of two, which round nothing.
+                const fn of_fourth<const N: usize>(mut factors: [$kind; N], times: $kind) -> [$kind; N] {
+                    let (mut power, mut by) = (0, times);
+                    while power < N {
+                        factors[power] *= by;
+                        by *= 0.25;
+                        power += 1;
+                    }
+                    factors
+                }
+                let cosine = polynomial(&const { of_fourth(fitted::$cosine, 1.0) }, self);
+                let sine = polynomial(&const { of_fourth(fitted::$short_sine, -0.5) }, self);
+                (cosine, sine)
             }
             #[inline(always)]
             fn cosine(self) -> Self {
