@@ -128,7 +128,7 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
     let strength = if theme.is_dark() { 190.0 } else { 95.0 };
     let mut mask = std::mem::take(canvas.mask());
     mask.resize(width * height, 0);
-    let mut touched = (height, 0);
+    let (mut touched_rows, mut touched_columns) = (height..0, width..0);
     for figure in figures {
         let size = figure.bounds().map_or(1.0, |bounds| bounds.size()).max(1e-9);
         for limb in figure.limbs.iter().filter(|limb| !figure.is_tie(limb)) {
@@ -156,7 +156,9 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
                         soft,
                         #[inline(always)]
                         |row, columns, first| {
-                            touched = (touched.0.min(row), touched.1.max(row + 1));
+                            touched_rows = touched_rows.start.min(row)..touched_rows.end.max(row + 1);
+                            touched_columns = touched_columns.start.min(columns.start)
+                                ..touched_columns.end.max(columns.end);
                             let span = row * width + columns.start..row * width + columns.end;
                             for (i, dark) in mask[span].iter_mut().enumerate() {
                                 let at = Vec2::new(first.x + i as f32, first.y);
@@ -170,9 +172,9 @@ fn draw_shadows(canvas: &mut Canvas, view: &View, floor: &Floor, figures: &[&Fig
             );
         }
     }
-    if touched.0 < touched.1 {
-        let rows = touched.0 * width..touched.1 * width;
-        for (pixel, dark) in canvas.image.pixels_mut()[rows.clone()].iter_mut().zip(&mut mask[rows]) {
+    for row in touched_rows {
+        let span = row * width + touched_columns.start..row * width + touched_columns.end;
+        for (pixel, dark) in canvas.image.pixels_mut()[span.clone()].iter_mut().zip(&mut mask[span]) {
             if *dark > 0 {
                 mix_pixel(pixel, [0, 0, 0], u32::from(*dark));
                 *dark = 0;

@@ -559,6 +559,23 @@ fn a_captured_curve_is_pushed_softly_and_the_source_stays() {
     assert!(Arc::ptr_eq(&source, desk.window().bench().source().unwrap()));
 }
 
+/// What lies under the hand stays there, however many frames the way takes, and while it is held still.
+#[test]
+fn values_are_panned_by_as_much_as_the_hand_moves() {
+    let mut desk = Desk::new();
+    desk.choose("Trunk");
+    let shown = [-40.0, 40.0];
+    desk.ask(Command::Curve(CurveCommand::ShowValues(Some(shown))));
+    let chart = desk.bench.0.get_by_label("Rotation curves chart").rect();
+    let per_point = (shown[1] - shown[0]) / f64::from(chart.height() - 28.0);
+    let from = Pos2::new(chart.left() + 100.0, chart.center().y);
+    desk.drag(from, vec2(0.0, 20.0), Modifiers::NONE, |_| ());
+    let panned = desk.window().bench().session.curves.values.expect("values that were set by hand");
+    for (before, after) in shown.iter().zip(panned) {
+        assert_near(after, before + 20.0 * per_point, 0.1 * 20.0 * per_point);
+    }
+}
+
 #[test]
 fn the_reach_of_a_push_is_set_by_wheel_and_menu() {
     let mut desk = Desk::new();

@@ -64,7 +64,7 @@ pub(super) fn first_pixel(steps: i64) -> i64 {
 }
 
 /// Whole pixels: `left` and `top` belong to the area, `right` and `bottom` do not.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub(super) struct Area {
     pub(super) left: i64,
     pub(super) top: i64,

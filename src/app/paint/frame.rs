@@ -6,6 +6,9 @@
 use super::area::Area;
 use super::area::Corner;
 use super::band::Band;
+use super::mark::joined;
+use super::mark::of_layer;
+use super::mark::of_vertex;
 use super::rectangle::Rectangle;
 use super::texture::Texture;
 use super::texture::Textures;
@@ -14,8 +17,6 @@ use egui::ClippedPrimitive;
 use egui::Mesh;
 use egui::epaint::Primitive;
 use egui::epaint::Vertex;
-use std::hash::BuildHasher;
-use std::hash::Hasher;
 use std::ops::Range;
 
 /// Rows that one thread takes at a time: enough to be worth the handing over, few enough to spread the work evenly.
@@ -23,9 +24,6 @@ pub(super) const BAND_ROWS: usize = 32;
 
 /// Columns of a tile.
 const TILE_COLUMNS: usize = 64;
-
-/// Marks are made the same way in every run.
-const SEEDS: ahash::RandomState = ahash::RandomState::with_seeds(1, 2, 3, 4);
 
 /// Tiles that `width` pixels across take.
 pub(super) fn n_tiles(width: usize) -> usize {
@@ -37,6 +35,8 @@ pub(super) fn n_tiles(width: usize) -> usize {
 pub(super) struct Lists {
     /// The corner of every vertex, mesh after mesh.
     corners: Vec<Corner>,
+    /// The mark of every vertex in the same order.
+    vertex_marks: Vec<u64>,
     /// The shapes that touch each band, in drawing order.
     bins: Vec<Vec<Shape>>,
 }
@@ -95,6 +95,7 @@ impl<'f> Frame<'f> {
         height: usize,
     ) -> Self {
         lists.corners.clear();
+        lists.vertex_marks.clear();
         lists.bins.resize_with(height.div_ceil(BAND_ROWS), Vec::new);
         lists.bins.iter_mut().for_each(Vec::clear);
         let mut layers = Vec::new();
@@ -111,12 +112,14 @@ impl<'f> Frame<'f> {
                 white: texture.sample(0.0, 0.0, texture.filter(0.0)),
                 clip,
                 first_corner: lists.corners.len(),
-                mark: SEEDS.hash_one((mesh.texture_id, texture.version, clip)),
+                mark: of_layer(texture.version, clip),
             };
             lists
                 .corners
                 .extend(mesh.vertices.iter().map(|vertex| Corner::new(vertex.pos, pixels_per_point)));
             let corners = &lists.corners[layer.first_corner..];
+            let marks = mesh.vertices.iter().zip(corners).map(|(vertex, corner)| of_vertex(*vertex, *corner));
+            lists.vertex_marks.extend(marks);
             layer.sort(corners, &mut lists.bins, layers.len() as u32);
             layers.push(layer);
         }
@@ -153,26 +156,16 @@ impl<'f> Frame<'f> {
 
     /// What stands for all that is drawn into each tile of band `i`: with the order, for one hides another.
     fn marks(&self, i: usize, width: usize, background: u32) -> Vec<u64> {
-        let mut tiles = vec![SEEDS.hash_one(background); n_tiles(width)];
+        let mut tiles = vec![u64::from(background); n_tiles(width)];
         for shape in &self.lists.bins[i] {
             let Layer { mesh, first_corner, mark, .. } = &self.layers[shape.layer as usize];
-            let mut hasher = SEEDS.build_hasher();
-            hasher.write_u64(*mark);
-            let first = shape.first as usize;
+            let vertex_marks = &self.lists.vertex_marks[*first_corner..];
+            let of = |i: usize| vertex_marks[mesh.indices[shape.first as usize + i] as usize];
             // The last of a rectangle's six indices is its fourth corner; the two before it were there already.
-            for index in [0, 1, 2, 5].into_iter().filter(|index| *index < shape.n_indices()) {
-                let index = mesh.indices[first + index] as usize;
-                let Vertex { uv, color, .. } = mesh.vertices[index];
-                hasher.write_u64(self.lists.corners[first_corner + index].bits());
-                hasher.write_u64(u64::from(uv.x.to_bits()) << 32 | u64::from(uv.y.to_bits()));
-                hasher.write_u32(u32::from_ne_bytes(color.to_array()));
-            }
-            let own = hasher.finish();
+            let fourth = if shape.is_rectangle { of(5) } else { 0 };
+            let own = joined(joined(*mark, of(0)), of(1)) ^ joined(joined(0, of(2)), fourth);
             for mark in &mut tiles[usize::from(shape.first_tile)..=usize::from(shape.last_tile)] {
-                let mut hasher = SEEDS.build_hasher();
-                hasher.write_u64(*mark);
-                hasher.write_u64(own);
-                *mark = hasher.finish();
+                *mark = joined(*mark, own);
             }
         }
         tiles

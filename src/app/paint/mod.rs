@@ -9,6 +9,7 @@ mod area;
 mod band;
 mod frame;
 mod headless;
+mod mark;
 mod offscreen;
 mod pixel;
 mod rectangle;

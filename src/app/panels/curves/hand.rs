@@ -293,8 +293,8 @@ fn drag(chart: &Chart<'_>, press: &CurvePress, is_over: bool, scope: &mut Scope<
         }
         Hold::Gutter => {
             let up = f64::from(press.by.y) * chart.values.per_point();
-            let bounds = [chart.values.low + up, chart.values.high + up];
-            ask(CurveCommand::ShowValues(Some(bounds)));
+            // From where they were when it began: the way is all of it so far.
+            ask(CurveCommand::ShowValues(Some(press.bounds.map(|value| value + up))));
         }
         Hold::Pip(grip) => {
             if is_first && !chart.choice.has(grip.joint, grip.secs) {
@@ -332,10 +332,6 @@ fn drag(chart: &Chart<'_>, press: &CurvePress, is_over: bool, scope: &mut Scope<
             let to = if to * far <= least * far { least } else { to };
             ask(end(KeyDrag::Scale { about_secs, factor: to / far }));
         }
-    }
-    // The wish is measured from where it began, so each step of panning values starts anew.
-    if let (Hold::Gutter, Some(own)) = (press.hold, &mut scope.pictures.curve_press) {
-        own.by = Vec2::ZERO;
     }
 }
 

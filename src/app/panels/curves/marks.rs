@@ -322,6 +322,12 @@ pub(super) fn legend_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, now: 
         let end = painter.text(pos2(left + 17.0, y), Align2::LEFT_CENTER, &value, mono.clone(), look.text);
         if before != value && !chart.is_source_alone && area.height() > 50.0 * set.lines.len() as f32 {
             y += 14.0;
+            // With all its digits a long one would lie on the numbers of the axis.
+            let long = set.times.value(line.before.values(), now).filter(|value| value.abs() >= 100.0);
+            let before = match long.filter(|_| set.unit == "°") {
+                Some(value) => format!("{value:.1}°"),
+                None => before,
+            };
             let words = format!("was {before}");
             painter.text(pos2(end.left(), y), Align2::LEFT_CENTER, words, mono, look.before);
         }
