@@ -173,7 +173,7 @@ fn of_keys(track: &RotationTrack, keys: &[usize]) -> RotationTrack {
     // At keys all other kinds are where the short way is.
     let is_held = track.paths == Paths::Every(PathKind::Hold);
     let paths = Paths::Every(if is_held { PathKind::Hold } else { PathKind::Slerp });
-    RotationTrack { stored, paths, ..RotationTrack::from_rotors(Times::Listed(times.into()), rotors) }
+    RotationTrack { paths, stored, ..RotationTrack::from_rotors(Times::Listed(times.into()), rotors) }
 }
 
 /// What closes the loop of a joint.

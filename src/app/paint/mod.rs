@@ -118,14 +118,14 @@ impl Painter {
             frame.draw(i, pixels, width, background, marks);
         };
         let marks = &mut self.marks;
-        match &self.threads {
-            Some(threads) => threads.install(|| {
+        if let Some(threads) = &self.threads {
+            threads.install(|| {
                 let bands = pixels.par_chunks_mut(width * BAND_ROWS).zip(marks.par_chunks_mut(n_tiles));
                 bands.enumerate().with_max_len(1).for_each(draw);
-            }),
-            None => {
-                pixels.chunks_mut(width * BAND_ROWS).zip(marks.chunks_mut(n_tiles)).enumerate().for_each(draw)
-            }
+            });
+        } else {
+            let bands = pixels.chunks_mut(width * BAND_ROWS).zip(marks.chunks_mut(n_tiles));
+            bands.enumerate().for_each(draw);
         }
     }
 }
