@@ -242,15 +242,16 @@ impl Draft {
         }
     }
 
-    /// Chooses the angles of `first..=last` anew where, near a pole, they have come to end as the mirrored triple against the key after them:
-    /// of the equal triples those that step least, both sides counted. `was` is the triple of `last` before it was given another pose; where
-    /// that was the mirrored one already, it is the file's own fault and stays.
+    /// Chooses the angles of `first..=last` anew where, near a pole, they have come to end as the mirrored triple against the key after them,
+    /// or whole turns off: of the equal triples those that step least, both sides counted. `was` is the triple of `last` before it was given
+    /// another pose; where that was mirrored or turns off already, it is the file's own fault and stays.
     pub(super) fn meet_after(&mut self, first: usize, last: usize, was: [f64; 3]) {
         let (Some(own), Some(after)) = (self.triple(last), self.triple(last + 1)) else { return };
         let Form::Angles { order, degrees, .. } = &mut self.form else { return };
         let order = *order;
         let [own, after, was] = [own, after, was].map(|triple| triple.map(f64::to_radians));
-        if !is_mirrored(order, own, after) || is_mirrored(order, was, after) {
+        let is_astray = |triple: [f64; 3]| is_mirrored(order, triple, after) || is_turns_off(triple, after);
+        if !is_astray(own) || is_astray(was) {
             return;
         }
         let near = degrees[first.saturating_sub(1)].map(f64::to_radians);
@@ -342,6 +343,11 @@ fn is_mirrored(order: EulerOrder, own: [f64; 3], near: [f64; 3]) -> bool {
         triple.into_iter().zip(near).map(|both| step(both).powi(2)).sum()
     };
     cost(order.mirrored(own)) + SWITCH_COST < cost(own)
+}
+
+/// Whether one of the angles of `own`, in radians, is nearer to that of `near` with whole turns added.
+fn is_turns_off(own: [f64; 3], near: [f64; 3]) -> bool {
+    own.into_iter().zip(near).any(|(own, near)| (own - near).abs() > PI)
 }
 
 fn finite_or_zero(triple: [f64; 3]) -> [f64; 3] {

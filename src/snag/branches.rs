@@ -1,5 +1,8 @@
 //! Which of its equal triples each key of a file's angles stores, against the row of triples that changes least.
 
+use std::cmp::Ordering;
+use std::ops::Range;
+
 use crate::clip::FileAngles;
 
 use super::scan::Scan;
@@ -7,6 +10,9 @@ use super::scan::Scan;
 /// What one step into another of the equal triples costs, in squared degrees: a change of branch must gain more than
 /// rounding and noise near a pole can.
 const SWITCH_COST: f64 = 225.0;
+
+/// And at most this share of the step's own cost may be left: past a pole both ways are about as far.
+const LEFT_SHARE: f64 = 0.8;
 
 /// Through a step in which the joint itself turns by more than this, in radians, no branch can be followed.
 const FOLLOWED_RAD: f64 = 1.0;
@@ -108,8 +114,8 @@ impl Stretch {
 
 /// Follows the angles with the two equal triples of each key, and gives the cheapest row by the sum of squared changes;
 /// whole turns are free. A row and its mirror image cost the same, so a change of branch is worth while just where it makes
-/// its own step cheaper. The first key keeps its own branch, unless the triples that keep theirs lie outside the usual range
-/// of the middle angle and the others inside. `wide` are the keys where anything can happen ([`wide_steps`]).
+/// its own step cheaper. Which of the two it is, is told by [`Sides::starts_mirrored`]. `wide` are the keys where anything can happen
+/// ([`wide_steps`]).
 pub(super) fn follow(scan: &Scan<'_>, angles: &FileAngles, wide: &[usize]) -> Branches {
     let degrees: &[[f64; 3]] = &angles.degrees;
     let has_mirror = angles.axes.len() == 3;
@@ -119,17 +125,18 @@ pub(super) fn follow(scan: &Scan<'_>, angles: &FileAngles, wide: &[usize]) -> Br
         .filter(|&&key| is_finite(&degrees[key]))
         .filter_map(|&key| Some((key, (0..key).rev().find(|&near| is_finite(&degrees[near]))?)))
         .collect();
-    let switches: Vec<usize> = steps
+    let told: Vec<(usize, Change)> = steps
         .iter()
-        .filter(|&&(key, near)| has_mirror && switches(scan, angles, near, key))
-        .map(|&(key, _)| key)
+        .filter(|_| has_mirror)
+        .filter_map(|&(key, near)| Some((key, change(scan, angles, near, key)?)))
         .collect();
-    let starts_mirrored = !switches.is_empty() && is_other_side_usual(angles, &switches);
+    let changes = changes_of_side(angles, &told);
 
+    let starts_mirrored = changes.first() == Some(&0);
     let mut stretches = vec![Stretch { first: 0, is_mirrored: starts_mirrored, turns: [0.0; 3] }];
     for (key, near) in steps {
         let last = stretches[stretches.len() - 1];
-        let is_mirrored = last.is_mirrored != switches.binary_search(&key).is_ok();
+        let is_mirrored = last.is_mirrored != changes.binary_search(&key).is_ok();
         let before = last.row(angles, degrees[near]);
         let own = if is_mirrored { mirrored(angles, degrees[key]) } else { degrees[key] };
         let turns = std::array::from_fn(|i| -((own[i] - before[i]) / 360.0).round() + 0.0);
@@ -141,33 +148,100 @@ pub(super) fn follow(scan: &Scan<'_>, angles: &FileAngles, wide: &[usize]) -> Br
     Branches { stretches }
 }
 
-/// Whether the row goes from the one to the other triple with the step from key `near` into `key`.
-fn switches(scan: &Scan<'_>, angles: &FileAngles, near: usize, key: usize) -> bool {
-    let (before, own) = (angles.degrees[near], angles.degrees[key]);
-    let change = |from: [f64; 3], to: [f64; 3]| (0..3).map(|i| short(to[i] - from[i]).powi(2)).sum::<f64>();
-    let is_cheaper = change(mirrored(angles, before), own) + SWITCH_COST < change(before, own);
-    // The turn is dear to compute and seldom asked for.
-    is_cheaper && scan.unit(near).zip(scan.unit(key)).map_or(0.0, |(a, b)| a.turn_to(b)) <= FOLLOWED_RAD
+/// What a step into another of the equal triples says.
+#[derive(Clone, Copy, Debug, PartialEq)]
+enum Change {
+    /// The row goes from the one to the other triple.
+    Switch,
+    /// The joint jumps: on which side the row goes on can't be told from the step.
+    Jump,
 }
 
-/// Of the two rows that mirror each other, whether the one that does not keep the first key is in the usual range.
-fn is_other_side_usual(angles: &FileAngles, switches: &[usize]) -> bool {
-    let usual = |middle: f64| {
-        if angles.order.is_proper() { (-1e-3..=180.001).contains(&middle) } else { middle.abs() <= 90.001 }
-    };
-    // How many keys of each side lie in the usual range, and how many in all.
-    let mut sides = [[0usize; 2]; 2];
-    let mut side = 0;
-    let mut switches = switches.iter().peekable();
-    for (key, triple) in angles.degrees.iter().enumerate() {
-        if switches.next_if(|&&switch| switch == key).is_some() {
-            side = 1 - side;
-        }
-        sides[side][0] += usize::from(usual(triple[1]));
-        sides[side][1] += 1;
+/// What there is to the step from key `near` into `key`; `None` where the file's own triples are the nearest.
+fn change(scan: &Scan<'_>, angles: &FileAngles, near: usize, key: usize) -> Option<Change> {
+    let (before, own) = (angles.degrees[near], angles.degrees[key]);
+    let change = |from: [f64; 3], to: [f64; 3]| (0..3).map(|i| short(to[i] - from[i]).powi(2)).sum::<f64>();
+    let (kept, switched) = (change(before, own), change(mirrored(angles, before), own));
+    if switched + SWITCH_COST >= kept || switched > LEFT_SHARE * kept {
+        return None;
     }
-    let [kept, other] = sides;
-    other[1] > 0 && kept[0] * 2 < kept[1] && other[0] * 2 > other[1]
+    // The turn is dear to compute and seldom asked for.
+    let turn = scan.unit(near).zip(scan.unit(key)).map_or(0.0, |(a, b)| a.turn_to(b));
+    Some(if turn <= FOLLOWED_RAD { Change::Switch } else { Change::Jump })
+}
+
+/// The keys at which the row changes between the file's own triples, on which it is before key 0, and the mirrored ones.
+///
+/// Between two jumps the steps tell only where it changes. Up to the first jump the first key keeps its own triple, and after a jump the row goes
+/// on as before it, but for parts where the other way round less is changed in good numbers: see [`Sides::starts_mirrored`].
+fn changes_of_side(angles: &FileAngles, told: &[(usize, Change)]) -> Vec<usize> {
+    let count = angles.degrees.len();
+    let mut changes = Vec::new();
+    let mut is_mirrored = false;
+    let mut start = 0;
+    let jumps = told.iter().enumerate().filter(|(_, (_, change))| *change == Change::Jump);
+    let parts = jumps.map(|(index, (key, _))| (index, *key)).chain([(told.len(), count)]);
+    let mut from = 0;
+    for (index, end) in parts {
+        let switches: Vec<usize> = told[start..index].iter().map(|(key, _)| *key).collect();
+        if !switches.is_empty() {
+            let sides = Sides::new(angles, from..end, &switches);
+            let starts_mirrored = sides.starts_mirrored(is_mirrored, from == 0);
+            if starts_mirrored != is_mirrored {
+                changes.push(from);
+            }
+            is_mirrored = starts_mirrored != (switches.len() % 2 == 1);
+            changes.extend(switches);
+        }
+        (start, from) = (index + 1, end);
+    }
+    changes
+}
+
+/// The two sides between which the row of some keys goes to and fro.
+struct Sides {
+    /// Of the side of the first key and of the other one: how many keys lie in the usual range of the middle angle, and how many in all.
+    each: [[usize; 2]; 2],
+}
+
+impl Sides {
+    /// `switches` are the keys of `keys` at which the side changes.
+    fn new(angles: &FileAngles, keys: Range<usize>, switches: &[usize]) -> Self {
+        let usual = |middle: f64| {
+            if angles.order.is_proper() {
+                (-1e-3..=180.001).contains(&middle)
+            } else {
+                middle.abs() <= 90.001
+            }
+        };
+        let mut each = [[0usize; 2]; 2];
+        let mut side = 0;
+        let mut switches = switches.iter().peekable();
+        for key in keys {
+            if switches.next_if(|&&switch| switch == key).is_some() {
+                side = 1 - side;
+            }
+            each[side][0] += usize::from(usual(angles.degrees[key][1]));
+            each[side][1] += 1;
+        }
+        Self { each }
+    }
+
+    /// Whether the file's triples are the mirrored ones at the first key. Those are, that lie outside the usual range of the middle angle where
+    /// the others lie inside (at a start alone: elsewhere the way that leads there has told). Where both lie inside, the row passes a pole, one of
+    /// them has to give way, and it is the one with fewer keys. `carried` is what is so else.
+    fn starts_mirrored(&self, carried: bool, is_start: bool) -> bool {
+        let [own, other] = self.each;
+        let is_usual = |[usual, all]: [usize; 2]| usual * 2 >= all;
+        if is_usual(own) && is_usual(other) {
+            return match own[1].cmp(&other[1]) {
+                Ordering::Less => true,
+                Ordering::Equal => carried,
+                Ordering::Greater => false,
+            };
+        }
+        if is_start { !is_usual(own) && other[0] * 2 > other[1] } else { carried }
+    }
 }
 
 /// The other triple of the same turn, in degrees.

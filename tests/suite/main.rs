@@ -146,5 +146,6 @@ mod rotor_methods;
 mod rotor_practice;
 mod rotor_properties;
 mod snags;
+mod stored_branches;
 mod strategies;
 mod support;
