@@ -61,6 +61,10 @@ const FLICK_SHARE: f64 = 0.6;
 /// A flick is no wider than this; what lies farther off is no motion of a foot or hand.
 const FLICK_RAD: f64 = 25.0 / 180.0 * PI;
 
+/// A joint that repeats so many keys, moved before, and goes elsewhere by this share of the run's size, stood still and catches up.
+const RESTING: usize = 3;
+const CAUGHT_UP: f64 = 0.2;
+
 /// Sound keys between two spikes that are looked at together.
 const NEXT_KEYS: usize = 3;
 
@@ -265,6 +269,7 @@ fn may_be_spike(scan: &Scan<'_>, rough: &Roughness<'_>, run: Run) -> bool {
         && run.last + END_KEYS < rough.len()
         && (run.first - 1..=run.last).all(|key| scan.moves_after(key))
         && !is_rest(rough, run)
+        && !catches_up(rough, run)
 }
 
 /// Whether a run comes back to where it began, as nearly as the joint's motion near by would.
@@ -277,6 +282,13 @@ fn comes_back(rough: &Roughness<'_>, run: Run) -> bool {
 /// Whether the keys of a run do no more than repeat the one before them: the joint is stuck there.
 fn is_rest(rough: &Roughness<'_>, run: Run) -> bool {
     run.last > run.first && (run.first..=run.last).all(|key| is_same(rough.pose(key - 1), rough.pose(key)))
+}
+
+/// Whether a run is where a joint goes on that stood still inside its motion: what it missed is no spike.
+fn catches_up(rough: &Roughness<'_>, run: Run) -> bool {
+    let repeats = |key: &usize| is_same(rough.pose(key - 1), rough.pose(*key));
+    let resting = (1..run.first).rev().take_while(repeats).count();
+    resting >= RESTING && resting + 1 < run.first && run.across > CAUGHT_UP * run.size
 }
 
 /// From this confidence on a spike may be mended unasked.

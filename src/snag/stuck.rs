@@ -34,13 +34,13 @@ const HABIT_RUNS: usize = 4;
 const HABIT_SECS: f64 = 1.0;
 
 /// With fewer steps in which it moves a joint shows nothing of how it does.
-const LEAST_MOVING: usize = 2 * NEAR;
+const LEAST_MOVING: usize = NEAR + 2;
 
 /// Steps on each side of a run that tell how the joint moves there.
 const NEAR: usize = 4;
 
 /// A run that ends by a step of so many usual ones, and at least so wide, has missed motion that it now catches up with.
-const CATCH_UP: f64 = 2.5;
+const CATCH_UP: f64 = 2.0;
 const CATCH_UP_RAD: f64 = 1.0 / 180.0 * PI;
 
 /// How abruptly a rest is entered and left: its last step as a share of those before it, and its first one as a share of
@@ -181,6 +181,8 @@ struct Ends {
     after: f64,
     /// The step out of the rest, in radians.
     exit: f64,
+    /// The last step before the rest as a share of the usual ones there.
+    entry: f64,
     /// The rest ends by a step that catches up with motion missed.
     catches_up: bool,
     /// Shares of the usual steps by which the rest is entered and left, together.
@@ -210,6 +212,7 @@ impl Ends {
             after,
             exit,
             catches_up: exit >= CATCH_UP_RAD && exit >= CATCH_UP * before.max(after) * exit_secs,
+            entry: shares[0],
             abruptness: shares[0] + shares[1],
             is_eased: shares[0].min(shares[1]) < EASED,
             is_even: is_even(scan, from..first) && is_even(scan, last + 2..to),
@@ -231,6 +234,7 @@ fn judge(scan: &Scan<'_>, habits: &Habits, rest: Rest) -> Option<Snag> {
             0.8
         }
         (false, true) if is_inside && ends.is_very_abrupt() => 0.6,
+        (false, true) if ends.before > 0.0 && ends.after <= 0.0 && ends.entry >= EASED => 0.5,
         (false, false) if is_inside && ends.is_very_abrupt() && !habits.has_manner && !habits.is_still => 0.5,
         _ => return None,
     };

@@ -466,7 +466,7 @@ const LEAST_PRECISION: f64 = 0.97;
 fn least_recall(kind: SnagKind, coarse: bool) -> f64 {
     match kind {
         SnagKind::Spike if coarse => 0.87,
-        SnagKind::Stuck if coarse => 0.83,
+        SnagKind::Stuck if coarse => 0.88,
         SnagKind::HalfTurn | SnagKind::Spike => 0.95,
         SnagKind::Jitter if coarse => 0.8,
         SnagKind::Stuck => 0.9,
