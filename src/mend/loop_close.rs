@@ -213,7 +213,11 @@ impl Change {
 
     /// By what a pose is turned on the bone side.
     fn turn(&self, shape: &Shape, secs: f64) -> Bivector {
-        let [share, rate] = shape.at(secs, self.seam.turn.length());
+        self.turn_of(shape.at(secs, self.seam.turn.length()))
+    }
+
+    /// Of a share of what is missing, and seconds of the difference in rate; as well of how fast both change.
+    fn turn_of(&self, [share, rate]: [f64; 2]) -> Bivector {
         let lift = if self.how.with_rate { self.seam.turn_rate * rate } else { Bivector::ZERO };
         self.seam.turn * share + lift
     }
@@ -222,24 +226,24 @@ impl Change {
     fn turn_rate(&self, shape: &Shape, secs: f64) -> Rotor {
         /// Radians to each side between which the exponential's slope is told: its square is lost.
         const SMALL: f64 = 1e-5;
-        let [share, rate] = shape.slopes_at(secs, self.seam.turn.length());
-        let lift = if self.how.with_rate { self.seam.turn_rate * rate } else { Bivector::ZERO };
-        let slope = self.seam.turn * share + lift;
+        let slope = self.turn_of(shape.slopes_at(secs, self.seam.turn.length()));
         let small = SMALL / slope.length().max(SMALL);
         let near = |sign: f64| Rotor::from_plane_angles(self.turn(shape, secs) + slope * (sign * small));
         sum(near(1.0), -near(-1.0)).scale(0.5 / small)
     }
 
-    /// By what a place is moved, and how fast that changes.
-    fn way_rate(&self, shape: &Shape, secs: f64) -> DVec3 {
-        let [share, rate] = shape.slopes_at(secs, 0.0);
-        let lift = if self.how.with_rate { self.seam.place_rate * rate } else { DVec3::ZERO };
-        self.seam.place * share + lift
-    }
-
     /// By what a place is moved.
     fn way(&self, shape: &Shape, secs: f64) -> DVec3 {
-        let [share, rate] = shape.at(secs, 0.0);
+        self.way_of(shape.at(secs, 0.0))
+    }
+
+    /// How fast that changes, a second.
+    fn way_rate(&self, shape: &Shape, secs: f64) -> DVec3 {
+        self.way_of(shape.slopes_at(secs, 0.0))
+    }
+
+    /// As [`Self::turn_of`].
+    fn way_of(&self, [share, rate]: [f64; 2]) -> DVec3 {
         let lift = if self.how.with_rate { self.seam.place_rate * rate } else { DVec3::ZERO };
         self.seam.place * share + lift
     }
@@ -432,14 +436,24 @@ mod tests {
         })
     }
 
+    /// A loop whose second joint is closed round after round, and the same closed by its ends, which has to meet.
+    fn closed_both_ways(clip: &Clip, how: LoopClose) -> [Clip; 2] {
+        let rounds = (0..ROUNDS).fold(clip.clone(), |clip, _| round(&clip, 1, how, DVec3::Y));
+        let at_once = closed_by_its_ends(clip, 1, how, DVec3::Y).unwrap();
+        let left = LoopSeam::of(&at_once, 1, how.is_first_again, DVec3::Y);
+        let missed = LoopSeam::of(clip, 1, how.is_first_again, DVec3::Y);
+        assert!(left.turn.length() < 1e-3 * missed.turn.length());
+        assert!(left.turn_rate.length() < 0.1 * missed.turn_rate.length());
+        [rounds, at_once]
+    }
+
     #[test]
     fn keys_at_times_of_their_own_are_closed_by_the_ends_as_round_after_round() {
         for (wide_deg, form) in [(4.0, LoopForm::Spread), (50.0, LoopForm::Window)] {
             for is_first_again in [false, true] {
                 let how = LoopClose { form, is_first_again, with_rate: true };
                 let clip = with_own_times(&clip(400, wide_deg));
-                let rounds = (0..ROUNDS).fold(clip.clone(), |clip, _| round(&clip, 1, how, DVec3::Y));
-                let at_once = closed_by_its_ends(&clip, 1, how, DVec3::Y).unwrap();
+                let [rounds, at_once] = closed_both_ways(&clip, how);
                 let [old, new, was] = [&rounds, &at_once, &clip].map(|clip| clip.rotation(1).unwrap());
                 let mut untouched = 0;
                 for (key, old) in old.keys.iter().enumerate() {
@@ -447,10 +461,6 @@ mod tests {
                     untouched += usize::from(new.keys[key] == was.keys[key]);
                 }
                 assert!(untouched > 80 || form == LoopForm::Spread, "{form:?}: {untouched} untouched");
-                let left = LoopSeam::of(&at_once, 1, is_first_again, DVec3::Y);
-                let missed = LoopSeam::of(&clip, 1, is_first_again, DVec3::Y);
-                assert!(left.turn.length() < 1e-3 * missed.turn.length());
-                assert!(left.turn_rate.length() < 0.1 * missed.turn_rate.length());
             }
         }
     }
@@ -514,8 +524,7 @@ mod tests {
             for is_first_again in [false, true] {
                 let how = LoopClose { form, is_first_again, with_rate: true };
                 let clip = clip(400, wide_deg);
-                let rounds = (0..ROUNDS).fold(clip.clone(), |clip, _| round(&clip, 1, how, DVec3::Y));
-                let at_once = closed_by_its_ends(&clip, 1, how, DVec3::Y).unwrap();
+                let [rounds, at_once] = closed_both_ways(&clip, how);
                 let [old, new, was] = [&rounds, &at_once, &clip].map(|clip| clip.rotation(1).unwrap());
                 let mut untouched = 0;
                 for key in 0..400 {
@@ -529,10 +538,6 @@ mod tests {
                     untouched += usize::from(new.keys[key] == was.keys[key]);
                 }
                 assert!(untouched > 100 || form == LoopForm::Spread, "{form:?}: {untouched} untouched");
-                let left = LoopSeam::of(&at_once, 1, is_first_again, DVec3::Y);
-                let missed = LoopSeam::of(&clip, 1, is_first_again, DVec3::Y);
-                assert!(left.turn.length() < 1e-3 * missed.turn.length());
-                assert!(left.turn_rate.length() < 0.1 * missed.turn_rate.length());
             }
         }
     }

@@ -6,7 +6,7 @@ use turnwright::snag::{Remedy, Snag, SnagKind, Unwatched, find};
 
 use crate::support::shared;
 
-/// An arm that passes a pole as it trembles came out of the mends on the mirrored triples for all that follows, and a leg with a whole turn left.
+/// An arm that passes a pole as it trembles came out of the mends on the mirrored triples for all that follows. A leg is numbered anew by a wrap that was told, and nowhere else.
 #[test]
 fn mended_angles_stay_on_the_side_where_the_file_has_most() {
     let Some(path) = shared("data/bvh/cmu_05_06_dance.bvh") else { return };
@@ -28,7 +28,7 @@ fn mended_angles_stay_on_the_side_where_the_file_has_most() {
         let renumbered: Vec<usize> = (0..before.keys.len()).filter(is_renumbered).collect();
         match label {
             "RightArm" => assert!(renumbered.is_empty(), "{renumbered:?}"),
-            // As the file is off by a turn there.
+            // Where a wrap is told, which shows only beside a flip that is left to a person.
             "RightUpLeg" => assert!(renumbered.iter().all(|&key| key <= 431), "{renumbered:?}"),
             _ => {}
         }

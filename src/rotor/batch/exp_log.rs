@@ -39,7 +39,7 @@ fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&m
         guards[row] = most - squares[row];
     }
     for row in 0..ROWS {
-        (out[0][row], factors[row]) = squares[row].half_turn();
+        (out[0][row], factors[row]) = squares[row].parts_of_turn();
     }
     for part in 0..3 {
         for row in 0..ROWS {

@@ -40,7 +40,7 @@ pub trait Polynomials:
     fn times_sine_over_angle(self, factor: Self) -> Self;
     /// `cos(α/2)` and `−sin(α/2)/α` of `α²`, 0 to π²: the parts of a rotor that turns by `α`. The sine is within 1.1e-16 in `f64`, with a
     /// power less than where two are added.
-    fn half_turn(self) -> (Self, Self);
+    fn parts_of_turn(self) -> (Self, Self);
     /// `cos √y`, 0 to (π/2)².
     fn cosine(self) -> Self;
 }
@@ -82,7 +82,7 @@ macro_rules! polynomials {
                 factor + factor * (self * polynomial(&beyond, self))
             }
             #[inline(always)]
-            fn half_turn(self) -> (Self, Self) {
+            fn parts_of_turn(self) -> (Self, Self) {
                 /// The factors for a fourth of the variable, and `times` as much: powers of two, which round nothing.
                 const fn of_fourth<const N: usize>(mut factors: [$kind; N], times: $kind) -> [$kind; N] {
                     let (mut power, mut by) = (0, times);
