@@ -153,8 +153,9 @@ pub fn survey(clip: &Clip, options: &SurveyOptions, progress: &dyn Progress) -> 
         }
     }
     if options.kinds.contains(&SnagKind::Wrap) {
-        let left = wraps_left(clip, &working, &found);
+        let mut left = wraps_left(clip, &working, &found);
         if !left.is_empty() {
+            safe_where_seen(clip, &found, &mut left);
             let joints: BTreeSet<usize> = left.iter().map(|snag| snag.joint).collect();
             found.extend(left.into_iter().map(|snag| (snag, 0.0)));
             working = mended_anew(clip, working, &found, &joints);
@@ -192,6 +193,35 @@ fn wraps_left(clip: &Clip, working: &Clip, found: &[(Snag, f64)]) -> Vec<Snag> {
         .collect()
 }
 
+/// A wrap that shows only where a jump is mended that is left to a person is left to them too: beside the jump it would leave numbers a
+/// turn off.
+fn safe_where_seen(clip: &Clip, found: &[(Snag, f64)], wraps: &mut [Snag]) {
+    for joint in wraps.iter().map(|wrap| wrap.joint).collect::<BTreeSet<usize>>() {
+        let own = found.iter().map(|(snag, _)| snag).filter(|snag| snag.joint == joint);
+        let (mut safe, left): (Vec<Snag>, Vec<Snag>) =
+            own.filter(|snag| snag.remedy != Remedy::Ask).cloned().partition(|snag| snag.safe);
+        if left.is_empty() {
+            continue;
+        }
+        safe.sort_by_key(in_order);
+        // What was found in a clip fits it.
+        let Ok(mended) = apply_all(clip, &safe) else { continue };
+        let seen = find(&mended, joint, SnagKind::Wrap);
+        let is_seen = |wrap: &Snag| {
+            let keys = (wrap.first_key, wrap.last_key);
+            seen.iter().any(|seen| (seen.first_key, seen.last_key) == keys && seen.remedy == wrap.remedy)
+        };
+        for wrap in wraps.iter_mut().filter(|wrap| wrap.joint == joint) {
+            wrap.safe &= is_seen(wrap);
+        }
+    }
+}
+
+/// Mending order, joint by joint.
+fn in_order(snag: &Snag) -> (SnagKind, usize, usize, usize) {
+    (snag.kind, snag.joint, snag.first_key, snag.last_key)
+}
+
 /// Runs of keys, asked for borders that lie within one of them.
 struct Borders {
     /// For runs in the order of their first keys: that, and the last key of this run and all before it.
@@ -220,7 +250,6 @@ impl Borders {
 /// before some wraps were found in `joints`.
 fn mended_anew(clip: &Clip, mut working: Clip, found: &[(Snag, f64)], joints: &BTreeSet<usize>) -> Clip {
     let is_bound = |snag: &Snag| asks_others(snag) || snag.kind.is_of_clip();
-    let in_order = |snag: &Snag| (snag.kind, snag.joint, snag.first_key, snag.last_key);
     if found.iter().any(|(snag, _)| is_bound(snag)) {
         let mut sorted: Vec<Snag> = found.iter().map(|(snag, _)| snag.clone()).collect();
         sorted.sort_by_key(in_order);

@@ -87,6 +87,8 @@ pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
     if step_secs > COARSEST_SECS {
         return Vec::new();
     }
+    let mut found = Vec::new();
+    let mut told: Vec<Span> = Vec::new();
     for (index, lag) in LAGS.into_iter().enumerate() {
         if lag > 1 && lag as f64 * step_secs > FARTHEST_SECS {
             break;
@@ -111,26 +113,32 @@ pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
                 spans[index] = ends::fitted(&row, spans[index], &(start..end));
             }
         }
-        if !spans.is_empty() {
-            return spans.into_iter().map(|span| snag(&scan, &levels, span)).collect();
-        }
+        // Noise shows at every distance: what was told at a shorter one is told.
+        spans.retain(|span| !told.iter().any(|told| lies_beside(span, told)));
+        found.extend(spans.iter().map(|span| snag(&scan, &levels, *span)));
+        told.extend(spans);
     }
-    Vec::new()
+    found.sort_by_key(|snag| snag.first_key);
+    found
+}
+
+/// Whether two spans share keys, or lie so close that the one may be the fringe of the other.
+fn lies_beside(a: &Span, b: &Span) -> bool {
+    a.first <= b.last + 2 && b.first <= a.last + 2
 }
 
 /// Two lists of spans as one, in order. Of two that overlap it is both together where they tremble all along, else the one
 /// of `others`, which are fitted closer.
 fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels<'_>) -> Vec<Span> {
-    let overlap = |a: &Span, b: &Span| a.first <= b.last + 2 && b.first <= a.last + 2;
     let mut kept: Vec<Span> = others;
     for span in spans {
         let (first, last) = kept
             .iter()
-            .filter(|other| overlap(&span, other))
+            .filter(|other| lies_beside(&span, other))
             .fold((span.first, span.last), |(first, last), other| {
                 (first.min(other.first), last.max(other.last))
             });
-        let is_overlapped = kept.iter().any(|other| overlap(&span, other));
+        let is_overlapped = kept.iter().any(|other| lies_beside(&span, other));
         let inside = first.max(2)..(last + 1).min(levels.len() - 2).max(first.max(2));
         let inside: Vec<f64> = inside.map(|key| levels.at(key)).collect();
         let level = 0.5 * white::usual_loud(&inside);
@@ -140,9 +148,9 @@ fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels<'_>) -> Vec<Span>
         }
         let clarity = kept
             .iter()
-            .filter(|other| overlap(&span, other))
+            .filter(|other| lies_beside(&span, other))
             .fold(span.clarity, |clarity, other| clarity.max(other.clarity));
-        kept.retain(|other| !overlap(&span, other));
+        kept.retain(|other| !lies_beside(&span, other));
         kept.push(Span { first, last, clarity, ..span });
     }
     kept.sort_by_key(|span| span.first);
