@@ -211,8 +211,9 @@ fn safe_where_seen(clip: &Clip, found: &[(Snag, f64)], wraps: &mut [Snag]) {
             let keys = (wrap.first_key, wrap.last_key);
             seen.iter().any(|seen| (seen.first_key, seen.last_key) == keys && seen.remedy == wrap.remedy)
         };
-        for wrap in wraps.iter_mut().filter(|wrap| wrap.joint == joint) {
-            wrap.safe &= is_seen(wrap);
+        for wrap in wraps.iter_mut().filter(|wrap| wrap.joint == joint && !is_seen(wrap)) {
+            wrap.safe = false;
+            wrap.text.push_str(", which shows once a jump left to you is mended");
         }
     }
 }
