@@ -3,7 +3,7 @@
 use super::regress::Table;
 
 /// How many differences are taken of what is to be smooth.
-const ORDER: usize = 3;
+pub(super) const ORDER: usize = 3;
 
 /// A smoother for rows of one length: minimises `Σ weight·(own − smooth)² + Σ dear·(third difference)²`, times taken as even.
 ///

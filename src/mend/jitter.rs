@@ -11,7 +11,7 @@
 use crate::clip::Clip;
 use crate::rotor::{Bivector, Rotor, chordal_mean, convolve};
 
-use super::banded::Smoother;
+use super::banded::{ORDER, Smoother};
 use super::draft::Draft;
 use super::others::Others;
 use super::redraw;
@@ -55,6 +55,9 @@ const ROUGH_SECS: f64 = 0.08;
 /// The least noise that sound motion is taken to have, and the largest weight that follows for a sound pose.
 const LEAST_QUIET_RAD: f64 = 3e-4;
 const MOST_WEIGHT: f64 = 1e4;
+
+/// Steps that are off the usual one by no more than this share are even.
+const EVEN: f64 = 0.05;
 
 /// No pose is moved by more than so many deviations of the noise, but for outliers.
 const MOST_DEVIATIONS: f64 = 6.0;
@@ -121,7 +124,8 @@ fn smoothed(
     let weight = (noise_rad / noise.quiet_rad.max(LEAST_QUIET_RAD)).powi(2).clamp(1.0, MOST_WEIGHT);
     let trembles = first - from..last + 1 - from;
     let weights = (0..to - from).map(|i| if trembles.contains(&i) { 1.0 } else { weight }).collect();
-    let mut task = Task { own, told, weights, trembles, step_secs, noise_rad };
+    let ease = ease(&times, step_secs);
+    let mut task = Task { own, told, weights, ease, trembles, step_secs, noise_rad };
     let most = MOST_DEVIATIONS * noise.sigma_rad;
     let change_of = |fitted: &Table, i: usize| {
         let row = fitted.row(i);
@@ -167,6 +171,17 @@ fn base(poses: &[Rotor], step_secs: f64) -> Option<(Vec<Rotor>, bool)> {
     Some((convolve(poses, &kernel).ok()?, false))
 }
 
+/// What a third difference that starts at each time is to cost, beside one over even steps: over a pause a motion goes farther, by
+/// the fifth power of how long it has (the variance of a jerk that is white noise, integrated).
+fn ease(times: &[f64], step_secs: f64) -> Vec<f64> {
+    let over = |start: usize| {
+        let end = (start + ORDER).min(times.len() - 1);
+        let long = (times[end] - times[start]) / (step_secs * (end - start).max(1) as f64);
+        if (long - 1.0).abs() <= EVEN { 1.0 } else { long.max(1.0 - EVEN).powi(-5) }
+    };
+    (0..times.len()).map(over).collect()
+}
+
 /// What is tried.
 #[derive(Clone, Copy, Debug)]
 struct Choice {
@@ -188,6 +203,8 @@ struct Task {
     own: Table,
     told: Option<Told>,
     weights: Vec<f64>,
+    /// The cost of each third difference beside one over even steps.
+    ease: Vec<f64>,
     trembles: std::ops::Range<usize>,
     step_secs: f64,
     noise_rad: f64,
@@ -218,6 +235,7 @@ impl Task {
                 roughness: told.roughness[from..to].to_vec(),
             }),
             weights: self.weights[from..to].to_vec(),
+            ease: self.ease[from..to].to_vec(),
             trembles: self.trembles.start.max(from) - from..self.trembles.end.min(to) - from,
             ..*self
         }
@@ -264,10 +282,9 @@ impl Task {
     fn smoothed_by(&self, cutoff_hz: f64, along: f64, beliefs: &[Option<f64>]) -> Option<Vec<Trial>> {
         // The smoother halves what moves at its cutoff: there its sixth power is as dear as a pose.
         let dear = (std::f64::consts::TAU * cutoff_hz * self.step_secs).powi(-6);
-        let dear: Vec<f64> = match &self.told {
-            Some(told) => told.roughness.iter().map(|rough| dear * rough.powf(-along)).collect(),
-            None => vec![dear; self.weights.len()],
-        };
+        let rough = |row: usize| self.told.as_ref().map_or(1.0, |told| told.roughness[row].powf(-along));
+        let dear: Vec<f64> =
+            self.ease.iter().enumerate().map(|(row, ease)| dear * ease * rough(row)).collect();
         let smoother = Smoother::new(&self.weights, &dear)?;
         let smooth = smoother.smooth(&self.own);
         let rough = minus(&self.own, &smooth);

@@ -140,6 +140,7 @@ fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels<'_>) -> Vec<Span>
             });
         let is_overlapped = kept.iter().any(|other| lies_beside(&span, other));
         let inside = first.max(2)..(last + 1).min(levels.len() - 2).max(first.max(2));
+        let inside = inside.filter(|&key| levels.row.is_even(key, 2, 1));
         let inside: Vec<f64> = inside.map(|key| levels.at(key)).collect();
         let level = 0.5 * white::usual_loud(&inside);
         let trembling = inside.iter().filter(|own| **own >= level).count();
@@ -179,15 +180,21 @@ impl<'a> Row<'a> {
     /// The noise, in radians per axis, that the fourth difference at a key stands for; 0 where its five poses are not
     /// evenly spaced, and where they reach beyond the ends.
     fn noise(&self, key: usize, lag: usize) -> f64 {
-        if key < 2 * lag || key + 2 * lag >= self.len() {
+        if key < 2 * lag || key + 2 * lag >= self.len() || !self.is_even(key, 2, lag) {
             return 0.0;
         }
-        let five = [0, 1, 2, 3, 4].map(|i| key + i * lag - 2 * lag);
+        fourth_difference([0, 1, 2, 3, 4].map(|i| self.poses.at(key + i * lag - 2 * lag)))
+    }
+
+    /// Whether the poses at a key and at `reach` to both sides, each `lag` keys from the next, are evenly spaced; they exist.
+    fn is_even(&self, key: usize, reach: usize, lag: usize) -> bool {
+        if matches!(self.scan.track.times, Times::Even { .. }) {
+            return true;
+        }
         let wide = lag as f64 * self.step_secs;
-        let secs = |key: usize| self.scan.secs(key);
-        let is_even = matches!(self.scan.track.times, Times::Even { .. })
-            || five.windows(2).all(|two| (secs(two[1]) - secs(two[0]) - wide).abs() <= UNEVEN * wide);
-        if is_even { fourth_difference(five.map(|key| self.poses.at(key))) } else { 0.0 }
+        let first = key - reach * lag;
+        let secs = |i: usize| self.scan.secs(first + i * lag);
+        (0..2 * reach).all(|i| (secs(i + 1) - secs(i) - wide).abs() <= UNEVEN * wide)
     }
 }
 

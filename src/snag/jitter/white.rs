@@ -48,6 +48,9 @@ const FEW_KEYS: usize = 14;
 /// In a joint near by less than this is nothing to compare with.
 const LEAST_NEAR_RAD: f64 = 0.3 / 180.0 * PI;
 
+/// Differences that tell a window's level at least.
+const LEAST_TOLD: usize = 4;
+
 /// Up to so many keys every window is looked at.
 const ALL_KEYS: usize = 400;
 
@@ -102,7 +105,8 @@ fn sixth_level(poses: &Poses<'_>, key: usize) -> f64 {
 
 /// What is seen in a window.
 struct Window {
-    keys: Range<usize>,
+    /// Those whose poses around are evenly spaced.
+    keys: Vec<usize>,
     /// The smaller of both levels.
     level: f64,
     fourths: Vec<Parts>,
@@ -145,30 +149,36 @@ impl Judge<'_> {
     fn window(&self, keys: Range<usize>, most_along: f64, most_growth: f64) -> Option<Window> {
         let poses = &self.row.poses;
         let inside = (keys.start + 1).max(3)..(keys.end - 1).min(poses.len() - 3);
-        if inside.len() < 4 {
+        // Poses to both sides of a pause tell nothing of noise.
+        let even = |reach: usize| inside.clone().filter(move |&key| self.row.is_even(key, reach, 1));
+        let inside: Vec<usize> = even(2).collect();
+        let sixths: Vec<usize> = even(3).collect();
+        if inside.len() < LEAST_TOLD || sixths.len() < LEAST_TOLD {
             return None;
         }
-        // Unevenly spaced poses have a level of 0.
-        let each = self.levels.within(inside.clone())?;
+        let each: Vec<f64> = inside.iter().map(|key| self.levels.at(*key)).collect();
         let fourth_level = middle(&each);
         if fourth_level < LEAST_RAD || each.contains(&0.0) {
             return None;
         }
-        let sixths: Vec<f64> = inside.clone().map(|key| sixth_level(poses, key)).collect();
-        let sixth_level = middle_of(sixths);
+        let sixth_level = middle_of(sixths.into_iter().map(|key| sixth_level(poses, key)).collect());
         if sixth_level < LEAST_RAD || !SIXTH_BESIDE_FOURTH.contains(&(sixth_level / fourth_level)) {
             return None;
         }
-        let fourths: Vec<Parts> = inside.clone().map(|key| fourth(|key| poses.at(key), key)).collect();
+        let fourths: Vec<Parts> = inside.iter().map(|&key| fourth(|key| poses.at(key), key)).collect();
         let energy: f64 = fourths.iter().map(|own| dot(*own, *own)).sum();
-        let along = fourths.windows(2).map(|two| dot(two[0], two[1])).sum::<f64>() / energy;
+        let pairs = inside.windows(2).zip(fourths.windows(2)).filter(|(keys, _)| keys[1] == keys[0] + 1);
+        let (along, count) =
+            pairs.fold((0.0, 0), |(sum, count), (_, two)| (sum + dot(two[0], two[1]), count + 1));
+        // A row without a pause has one pair less than keys.
+        let along = along / energy * (inside.len() - 1) as f64 / f64::from(count.max(1));
         if along > most_along {
             return None;
         }
         let wide: Vec<f64> = inside
-            .clone()
-            .filter(|key| (4..poses.len() - 4).contains(key))
-            .map(|key| self.row.noise(key, 2))
+            .iter()
+            .filter(|key| (4..poses.len() - 4).contains(*key))
+            .map(|&key| self.row.noise(key, 2))
             .filter(|noise| *noise > 0.0)
             .collect();
         if wide.len() >= 3 && middle_of(wide) > most_growth * fourth_level {
@@ -193,7 +203,7 @@ impl Judge<'_> {
 
     fn quiet(&mut self) -> f64 {
         let row = self.row;
-        *self.quiet.get_or_insert_with(|| level_of_share(&row.poses, QUIET_SHARE))
+        *self.quiet.get_or_insert_with(|| level_of_share(row, QUIET_SHARE))
     }
 
     fn all(&mut self) -> f64 {
@@ -207,7 +217,7 @@ impl Judge<'_> {
         *self.mirror.get_or_init(|| {
             let other = scan.other(mirror_of(&scan.clip.skeleton, scan.joint)?)?;
             let row = Row::new(other).filter(|row| row.len() >= 16)?;
-            Some(level_of_share(&row.poses, 1.0))
+            Some(level_of_share(&row, 1.0))
         })
     }
 
@@ -227,7 +237,8 @@ impl Judge<'_> {
     }
 
     fn share_of(window: &Window, other: &Scan<'_>) -> f64 {
-        let (low, high) = (window.keys.start - 2, window.keys.end + 2);
+        let [first, .., end] = window.keys[..] else { return 0.0 };
+        let (low, high) = (first - 2, end + 3);
         let mut before = other.track.sound_key(low);
         let poses: Vec<Rotor> = (low..high)
             .map(|key| {
@@ -235,7 +246,7 @@ impl Judge<'_> {
                 before
             })
             .collect();
-        let rows: Vec<Parts> = (2..poses.len() - 2).map(|key| fourth(|key| poses[key], key)).collect();
+        let rows: Vec<Parts> = window.keys.iter().map(|key| fourth(|key| poses[key], key - low)).collect();
         let (along, _) = directions(&rows);
         let signal: Vec<f64> = rows.iter().map(|own| dot(*own, along)).collect();
         let length = signal.iter().map(|own| own * own).sum::<f64>();
@@ -303,9 +314,10 @@ impl Judge<'_> {
         if last + 1 < first + SHORTEST {
             return None;
         }
-        let noise = middle_of(self.levels.within(first.max(2)..(last + 1).min(count - 2))?);
+        let inside = (first.max(2)..(last + 1).min(count - 2)).filter(|&key| self.row.is_even(key, 2, 1));
+        let noise = middle_of(inside.map(|key| self.levels.at(key)).collect());
         let least = LEAST_RAD.max(TIMES_QUIET * quiet.min(noise / TIMES_QUIET));
-        if noise < LEAST_SHARE * least {
+        if noise < LEAST_SHARE * least || noise.is_infinite() {
             return None;
         }
         Some(Span { first, last, noise, quiet: quiet.min(noise), clarity: noise / least })
@@ -324,17 +336,19 @@ pub(super) fn usual_loud(levels: &[f64]) -> f64 {
 }
 
 /// The level of sixth differences that a share of the windows stays below.
-fn level_of_share(poses: &Poses<'_>, share: f64) -> f64 {
+fn level_of_share(row: &Row<'_>, share: f64) -> f64 {
     const WIDTH: usize = 8;
     /// Windows that are looked at.
     const SAMPLED: usize = 600;
+    let poses = &row.poses;
     let stride = (poses.len() / SAMPLED).max(1);
     let mut levels: Vec<f64> = (0..(poses.len() + 1).saturating_sub(WIDTH))
         .step_by(stride)
         .filter_map(|start| {
             let keys = (start + 1).max(3)..(start + WIDTH - 1).min(poses.len() - 3);
-            let own: Vec<f64> = keys.map(|key| sixth_level(poses, key)).collect();
-            (own.len() >= 4).then(|| middle_of(own))
+            let even = keys.filter(|&key| row.is_even(key, 3, 1));
+            let own: Vec<f64> = even.map(|key| sixth_level(poses, key)).collect();
+            (own.len() >= LEAST_TOLD).then(|| middle_of(own))
         })
         .collect();
     if levels.is_empty() {
