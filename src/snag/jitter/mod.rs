@@ -567,6 +567,20 @@ mod tests {
         }
     }
 
+    #[test]
+    fn a_pause_between_keys_does_not_hide_the_noise_beside_it() {
+        let pause = |key: usize| if key > 16 { 0.2 - 1.0 / 24.0 } else { 0.0 };
+        let times: Vec<f64> = (0..60).map(|key| key as f64 / 24.0 + pause(key)).collect();
+        let is_told = |seed: &u64| {
+            let clip = shaken(Times::Listed(times.clone().into()), (10, 22), 3.0, *seed);
+            let outlines = Outlines::new(1);
+            let snags = find(View { clip: &clip, outlines: &outlines }, 0);
+            snags.iter().any(|snag| snag.first_key.abs_diff(10) <= 2 && snag.last_key.abs_diff(22) <= 2)
+        };
+        let told = (0..20).filter(is_told).count();
+        assert!(told >= 16, "{told} of 20");
+    }
+
     /// What is to be told of the first joint's row.
     pub(super) fn with_row<T>(clip: &Clip, told: impl FnOnce(&Row<'_>) -> T) -> T {
         let outlines = Outlines::new(1);
