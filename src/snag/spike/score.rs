@@ -40,6 +40,9 @@ const EVEN: f64 = 6.75;
 const UNLIKE: f64 = 2.82;
 const BIAS: f64 = -10.06;
 
+/// Keys of the other side to both sides of a run that are looked at: some seconds, so that long clips cost no more for each run.
+const NEAR_KEYS: usize = 256;
+
 /// How unlike the other side is, where there is none.
 const UNLIKE_ALONE: f64 = 0.7;
 
@@ -166,7 +169,9 @@ impl<'a> Scorer<'a> {
         let apart = |poses: &[Rotor]| -> f64 {
             shape(poses).iter().zip(&wanted).map(|(a, b)| (a - b).abs()).sum::<f64>() / wanted.len() as f64
         };
-        mirror.windows(last + 1 + 2 * BESIDE - first).map(apart).fold(size, f64::min)
+        let end = (last + NEAR_KEYS).min(mirror.len());
+        let near = &mirror[first.saturating_sub(NEAR_KEYS).min(end)..end];
+        near.windows(last + 1 + 2 * BESIDE - first).map(apart).fold(size, f64::min)
             / size.max(LEAST_SPREAD_RAD)
     }
 
@@ -253,4 +258,74 @@ fn off_curve(rough: &Roughness<'_>, first: usize, last: usize) -> OffCurve {
 
 fn dot(a: [f64; 4], b: [f64; 4]) -> f64 {
     a.iter().zip(b).map(|(a, b)| a * b).sum()
+}
+
+#[cfg(test)]
+mod tests {
+    use std::sync::Arc;
+
+    use glam::DVec3;
+
+    use super::super::super::outline::Outlines;
+    use super::super::super::scan::View;
+    use super::*;
+    use crate::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times};
+    use crate::skeleton::{Joint, Skeleton};
+
+    /// A joint that swings as it will, with some keys off by an angle about one axis.
+    fn swung(count: usize, off: &[usize], off_deg: f64) -> Clip {
+        let times = Times::Even { step_secs: 1.0 / 24.0, count };
+        let keys = (0..count).map(|key| {
+            let secs = key as f64 / 24.0;
+            let swing = Bivector::new(0.6 * (6.3 * secs).sin(), 0.2 * (12.6 * secs).cos(), 0.1);
+            let kick = if off.contains(&key) { off_deg.to_radians() } else { 0.0 };
+            Rotor::from_plane_angles(swing) * Rotor::from_plane_angles(Bivector::new(0.0, 0.0, kick))
+        });
+        let rotation = Some(RotationTrack::from_rotors(times.clone(), keys.collect::<Vec<_>>()));
+        Clip {
+            name: String::new(),
+            skeleton: Arc::new(Skeleton::new(vec![Joint::placed("arm", 0, None, DVec3::ZERO)]).unwrap()),
+            joints: vec![Arc::new(JointTracks { rotation, ..JointTracks::default() })],
+            duration_secs: times.at(count - 1),
+            grid: FrameGrid { times, rate: 24.0 },
+        }
+    }
+
+    fn told(clip: &Clip) -> Vec<(usize, usize)> {
+        let outlines = Outlines::new(1);
+        let scan = Scan::new(View { clip, outlines: &outlines }, 0).unwrap();
+        let rough = Roughness::new(scan, LEAST_KEYS).unwrap();
+        let found = Scorer::new(&scan, &rough).unwrap().find();
+        found.into_iter().map(|(run, _)| (run.first, run.last)).collect()
+    }
+
+    #[test]
+    fn an_even_run_off_its_curve_is_told_to_the_key_and_a_swing_is_not() {
+        assert!(told(&swung(30, &[], 0.0)).is_empty());
+        for off in [&[12][..], &[12, 13], &[12, 13, 14]] {
+            assert_eq!(told(&swung(30, off, 25.0)), [(12, off[off.len() - 1])], "{off:?}");
+        }
+    }
+
+    #[test]
+    fn a_curve_through_keys_of_a_cubic_leaves_nothing_of_them() {
+        let times = Times::Even { step_secs: 1.0 / 24.0, count: 16 };
+        // About one axis, so that plane angles are numbers.
+        let angle = |key: usize| {
+            let time = key as f64 / 10.0;
+            0.3 - 0.2 * time + 0.4 * time * time - 0.1 * time.powi(3)
+        };
+        let keys: Vec<Rotor> =
+            (0..16).map(|key| Rotor::from_plane_angles(Bivector::new(0.0, 0.0, angle(key)))).collect();
+        let rotation = Some(RotationTrack::from_rotors(times, keys));
+        let clip = Clip {
+            joints: vec![Arc::new(JointTracks { rotation, ..JointTracks::default() })],
+            ..swung(16, &[], 0.0)
+        };
+        let outlines = Outlines::new(1);
+        let scan = Scan::new(View { clip: &clip, outlines: &outlines }, 0).unwrap();
+        let rough = Roughness::new(scan, LEAST_KEYS).unwrap();
+        let curve = off_curve(&rough, 7, 8);
+        assert!(curve.off < 1e-12 && curve.rest < 1e-12, "{} {}", curve.off, curve.rest);
+    }
 }
