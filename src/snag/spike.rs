@@ -2,6 +2,7 @@
 
 mod alike;
 mod ends;
+mod score;
 
 use std::f64::consts::PI;
 
@@ -12,6 +13,7 @@ use super::scan::{Finding, Scan, View};
 use super::stuck::is_same;
 use super::{Remedy, Snag, SnagKind};
 use alike::Alike;
+use score::{Scorer, touch};
 
 /// With fewer keys nothing can be said about what is usual.
 const LEAST_KEYS: usize = 8;
@@ -95,34 +97,53 @@ struct Run {
 pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
     let Some(scan) = Scan::new(view, joint) else { return Vec::new() };
     let Some(rough) = Roughness::new(scan, LEAST_KEYS) else { return Vec::new() };
-    let mut snags = Vec::new();
     let alike = Alike::new(&scan, &rough);
+    let mut found = by_roughness(&scan, &rough, &alike);
+    if let Some(scorer) = Scorer::new(&scan, &rough) {
+        found.retain(|(run, _)| scorer.agrees(*run));
+        add_scored(&mut found, scorer.find().into_iter().filter(|(run, _)| !alike.is_repeated(*run)));
+    }
+    found.extend(ends::find(&scan, &rough).map(|run| (run, ends::CONFIDENCE)));
+    found.into_iter().map(|(run, confidence)| spike(&scan, run, confidence)).collect()
+}
+
+/// Adds the runs that are told by their score. They are the better ones where they touch those of the roughness, but as sure.
+fn add_scored(found: &mut Vec<(Run, f64)>, scored: impl Iterator<Item = (Run, f64)>) {
+    for (run, confidence) in scored {
+        let touched = found.iter().filter(|(other, _)| touch(&run, other));
+        let confidence = touched.map(|(_, confidence)| *confidence).fold(confidence, f64::max);
+        found.retain(|(other, _)| !touch(&run, other));
+        found.push((run, confidence));
+    }
+}
+
+/// The runs that are told because they take the roughness of the motion with them, and how sure that is.
+fn by_roughness(scan: &Scan<'_>, rough: &Roughness<'_>, alike: &Alike<'_>) -> Vec<(Run, f64)> {
+    let mut found = Vec::new();
     let mut key = 1;
     loop {
         key = rough.next_rough(key);
         if key + 1 >= rough.len() {
-            break;
+            return found;
         }
-        let threshold = threshold(&rough, key);
+        let threshold = threshold(rough, key);
         if rough.residual(key) < threshold {
             key += 1;
             continue;
         }
-        let end = stretch(&rough, key, threshold);
-        if let Some(run) = best_run(&rough, key, end)
-            && let Some(confidence) = judge(&scan, &rough, run, LEAST_PRODUCT)
-                .or_else(|| beside_another(&scan, &rough, run))
+        let end = stretch(rough, key, threshold);
+        if let Some(run) = best_run(rough, key, end)
+            && let Some(confidence) = judge(scan, rough, run, LEAST_PRODUCT)
+                .or_else(|| beside_another(scan, rough, run))
                 .or_else(|| alike.stands_alone(run))
             && !alike.is_repeated(run)
         {
-            snags.push(spike(&scan, run, confidence));
+            found.push((run, confidence));
             key = end.max(run.last) + 1;
         } else {
             key += 1;
         }
     }
-    snags.extend(ends::find(&scan, &rough).map(|run| spike(&scan, run, ends::CONFIDENCE)));
-    snags
 }
 
 /// At the ends of a longer run only half of its roughness shows.

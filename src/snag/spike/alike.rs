@@ -44,7 +44,7 @@ const SWING_SHARE: f64 = 0.5;
 const SWING_ROUGHNESS: f64 = 0.5;
 
 /// Keys beside a run that belong to its shape.
-const BESIDE: usize = 2;
+pub(super) const BESIDE: usize = 2;
 
 /// A joint moves like that when it does the same so many times more: poses turn against each other by the same angles, within a share
 /// of the roughness (they are taken at other moments of each swing); as rough by a share; and in one plane, by its cosine.
@@ -223,7 +223,7 @@ fn is_done(rough: &Roughness<'_>, run: Run, other: &Roughness<'_>) -> bool {
 }
 
 /// The turns from each pose to each later one: they say how a stretch moves, but not about which axes.
-fn shape(poses: &[Rotor]) -> Vec<f64> {
+pub(super) fn shape(poses: &[Rotor]) -> Vec<f64> {
     let mut turns = Vec::with_capacity(poses.len() * poses.len() / 2);
     for (i, a) in poses.iter().enumerate() {
         turns.extend(poses[i + 1..].iter().map(|b| angle_of_dot(a.dot(*b))));
