@@ -1,8 +1,8 @@
 //! How long does it take to find all snags of a long clip, against reading it, and how much memory? `cargo bench
 //! --no-default-features --bench survey` takes turns at reading and finding and prints the least processor time of several runs for
 //! 60 joints × 36,000 frames (5 minutes at 120 a second) of stored angles with noise and faults in every joint, the share of each kind, how many
-//! cores were busy, and the most memory beside the clip itself. `FRAMES=200000` measures the length that is asked for, `RUNS=1` once;
-//! with `--test` a short clip is surveyed once.
+//! cores were busy, and the most memory beside the clip itself. `FRAMES=200000` measures the length that is asked for, `RATE=30` frames
+//! that lie further apart, so that everything moves faster from one to the next, `RUNS=1` once; with `--test` a short clip is surveyed once.
 #![expect(clippy::print_stdout, reason = "the numbers are what a bench is for")]
 
 use std::fs::OpenOptions;
@@ -29,10 +29,11 @@ fn main() {
         std::env::var(name).ok().and_then(|value| value.parse().ok()).unwrap_or(usual)
     };
     let (frames, runs) = if is_test { (600, 1) } else { (given("FRAMES", 36_000), given("RUNS", 5)) };
-    let clip = clip(frames);
+    let rate = given("RATE", 120) as f64;
+    let clip = clip(frames, rate);
     let text = bvh::from_clip(&clip).0;
     // Learned from its first minute, as from a take that is known to be clean.
-    let limits = Arc::new(learned(&self::clip(frames.min(7200)), &LearnOptions::default()));
+    let limits = Arc::new(learned(&self::clip(frames.min(7200), rate), &LearnOptions::default()));
     assert!(!limits.joints.is_empty(), "there are limits to be beyond");
     let named =
         |kinds: Vec<SnagKind>, limits: Option<&Arc<Limits>>| SurveyOptions { kinds, limits: limits.cloned() };
@@ -135,8 +136,8 @@ fn memory(clip: &Clip, options: &SurveyOptions) {
 }
 
 /// Waves with noise, and in every joint a spike, a half-turn and a heading that wraps.
-fn clip(frames: usize) -> Clip {
-    let times = Times::Even { step_secs: 1.0 / 120.0, count: frames };
+fn clip(frames: usize, rate: f64) -> Clip {
+    let times = Times::Even { step_secs: 1.0 / rate, count: frames };
     let mut noise = 1_u64;
     let joints: Vec<Joint> = (0..JOINTS)
         // Its heading is the twist of its limb, so that there are limits of its swing to learn.
@@ -145,7 +146,7 @@ fn clip(frames: usize) -> Clip {
     let tracks = (0..JOINTS).map(|joint| {
         let degrees: Vec<[f64; 3]> = (0..frames)
             .map(|frame| {
-                let t = frame as f64 / 120.0 + joint as f64;
+                let t = frame as f64 / rate + joint as f64;
                 let mut small = || {
                     noise = noise.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1);
                     ((noise >> 40) as f64 / f64::from(1 << 24) - 0.5) * 0.2
@@ -170,7 +171,7 @@ fn clip(frames: usize) -> Clip {
         name: String::new(),
         joints: tracks.collect(),
         skeleton: Arc::new(Skeleton::new(joints).expect("each joint hangs on the one before")),
-        grid: FrameGrid { times: times.clone(), rate: 120.0 },
+        grid: FrameGrid { times: times.clone(), rate },
         duration_secs: times.span().map_or(0.0, |(_, last)| last),
     }
 }
