@@ -532,11 +532,13 @@ fn a_long_snag_leaves_those_within_it_their_marks() {
         .filter(|snag| snag.first_secs > long.first_secs + 0.3 && middle(snag) < middle(long) - 0.3)
         .collect();
     assert!(within.len() >= 3, "{} lie within it", within.len());
-    // Where letters would lie on each other the first stands for both.
+    // Where letters would lie on each other one stands for both.
     let apart = |snag: &turnwright::snag::Snag| {
-        within.iter().all(|other| other.first_secs >= snag.first_secs || middle(other) < middle(snag) - 0.2)
+        within.iter().all(|other| *other == snag || (middle(other) - middle(snag)).abs() > 0.2)
     };
-    for snag in within.iter().filter(|snag| apart(snag)) {
+    let apart: Vec<_> = within.iter().filter(|snag| apart(snag)).collect();
+    assert!(apart.len() >= 2, "{} stand by themselves", apart.len());
+    for snag in apart {
         let told = told_on_the_map(&mut bench, "RightUpLeg", middle(snag));
         assert!(
             told.ends_with(&format!(", {} {}, open", snag.kind.letter(), snag.kind)),
