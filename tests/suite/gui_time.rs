@@ -534,7 +534,7 @@ fn a_long_snag_leaves_those_within_it_their_marks() {
     assert!(within.len() >= 3, "{} lie within it", within.len());
     // Where letters would lie on each other the one farther left stands for both.
     let apart = |snag: &turnwright::snag::Snag| {
-        let is_clear = |off: f64| off < -0.2 || off > 0.0;
+        let is_clear = |off: f64| !(-0.2..=0.0).contains(&off);
         within.iter().all(|other| *other == snag || is_clear(middle(other) - middle(snag)))
     };
     let apart: Vec<_> = within.iter().filter(|snag| apart(snag)).collect();
