@@ -266,15 +266,11 @@ fn trembling<const LAG: usize>(parts: &[[f64; ROOM]; 4]) -> u8 {
 #[cfg(test)]
 mod tests {
     use std::collections::BTreeSet;
-    use std::sync::Arc;
 
-    use glam::DVec3;
-
+    use super::super::tests::of_one_joint;
     use super::super::{Memory, SnagKind, View, find_with};
     use super::*;
-    use crate::clip::{FrameGrid, JointTracks};
     use crate::rotor::Bivector;
-    use crate::skeleton::{Joint, Skeleton};
 
     /// A calm swing with one key changed by `change`.
     fn outline(times: Times, change: impl Fn(usize, Rotor) -> Rotor) -> Outline {
@@ -372,15 +368,7 @@ mod tests {
             keys[key] =
                 keys[key] * Rotor::from_plane_angles(Bivector::new(0.0, f64::to_radians(degrees), 0.0));
         }
-        let joint = Joint::placed("arm", 0, None, DVec3::ZERO);
-        let rotation = Some(RotationTrack::from_rotors(times.clone(), keys));
-        Clip {
-            name: String::new(),
-            skeleton: Arc::new(Skeleton::new(vec![joint]).unwrap()),
-            joints: vec![Arc::new(JointTracks { rotation, ..JointTracks::default() })],
-            grid: FrameGrid { times, rate },
-            duration_secs: 1499.0 / rate,
-        }
+        of_one_joint(times, rate, keys)
     }
 
     #[test]

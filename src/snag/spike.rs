@@ -99,7 +99,7 @@ pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
     let Some(rough) = Roughness::new(scan, LEAST_KEYS) else { return Vec::new() };
     let alike = Alike::new(&scan, &rough);
     let mut found = by_roughness(&scan, &rough, &alike);
-    if let Some(scorer) = Scorer::new(&scan, &rough) {
+    if let Some(scorer) = Scorer::new(&alike) {
         found.retain(|(run, _)| scorer.agrees(*run));
         add_scored(&mut found, scorer.find().into_iter().filter(|(run, _)| !alike.is_repeated(*run)));
     }
@@ -216,10 +216,16 @@ fn across(rough: &Roughness<'_>, first: usize, last: usize, key: usize) -> Rotor
     slerp(rough.pose(a), rough.pose(b), share)
 }
 
-fn weigh(rough: &Roughness<'_>, first: usize, last: usize) -> Run {
+/// How far the keys of `first..=last` lie off the way across them, the nearest first.
+fn offs(rough: &Roughness<'_>, first: usize, last: usize) -> Vec<f64> {
     let mut off: Vec<f64> =
         (first..=last).map(|key| across(rough, first, last, key).turn_to(rough.pose(key))).collect();
     off.sort_by(f64::total_cmp);
+    off
+}
+
+fn weigh(rough: &Roughness<'_>, first: usize, last: usize) -> Run {
+    let off = offs(rough, first, last);
     let near = first.saturating_sub(2).max(1)..=(last + 2).min(rough.len() - 2);
     Run {
         first,

@@ -140,8 +140,7 @@ fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels<'_>) -> Vec<Span>
             });
         let is_overlapped = kept.iter().any(|other| lies_beside(&span, other));
         let inside = first.max(2)..(last + 1).min(levels.len() - 2).max(first.max(2));
-        let inside = inside.filter(|&key| levels.row.is_even(key, 2, 1));
-        let inside: Vec<f64> = inside.map(|key| levels.at(key)).collect();
+        let inside = levels.even_within(inside);
         let level = 0.5 * white::usual_loud(&inside);
         let trembling = inside.iter().filter(|own| **own >= level).count();
         if is_overlapped && trembling * 4 < inside.len() * 3 {
@@ -246,6 +245,11 @@ impl<'r> Levels<'r> {
     /// The levels at some keys; `None` where there are no such keys.
     fn within(&self, keys: Range<usize>) -> Option<Vec<f64>> {
         (keys.start <= keys.end && keys.end <= self.len()).then(|| keys.map(|key| self.at(key)).collect())
+    }
+
+    /// The levels at those of some keys whose poses around are evenly spaced: a pause has none.
+    fn even_within(&self, keys: Range<usize>) -> Vec<f64> {
+        keys.filter(|&key| self.row.is_even(key, 2, self.lag)).map(|key| self.at(key)).collect()
     }
 
     /// The keys of a window.
@@ -531,15 +535,11 @@ fn snag(scan: &Scan<'_>, levels: &Levels<'_>, span: Span) -> Snag {
 
 #[cfg(test)]
 mod tests {
-    use std::sync::Arc;
-
-    use glam::DVec3;
-
     use super::super::outline::Outlines;
+    use super::super::tests::of_one_joint;
     use super::*;
-    use crate::clip::{Clip, FrameGrid, JointTracks, RotationTrack};
+    use crate::clip::Clip;
     use crate::rotor::Bivector;
-    use crate::skeleton::{Joint, Skeleton};
 
     /// A joint that swings calmly and trembles from one key to another by so many degrees per axis.
     pub(super) fn shaken(times: Times, (first, last): (usize, usize), noise_deg: f64, seed: u64) -> Clip {
@@ -557,14 +557,8 @@ mod tests {
             let shake = if (first..=last).contains(&key) { noise } else { Bivector::new(0.0, 0.0, 0.0) };
             Rotor::from_plane_angles(swing) * Rotor::from_plane_angles(shake)
         });
-        let rotation = Some(RotationTrack::from_rotors(times.clone(), keys.collect::<Vec<_>>()));
-        Clip {
-            name: String::new(),
-            skeleton: Arc::new(Skeleton::new(vec![Joint::placed("arm", 0, None, DVec3::ZERO)]).unwrap()),
-            joints: vec![Arc::new(JointTracks { rotation, ..JointTracks::default() })],
-            duration_secs: times.at(times.len() - 1),
-            grid: FrameGrid { times, rate: 30.0 },
-        }
+        let keys = keys.collect();
+        of_one_joint(times, 30.0, keys)
     }
 
     #[test]

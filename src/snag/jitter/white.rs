@@ -314,8 +314,7 @@ impl Judge<'_> {
         if last + 1 < first + SHORTEST {
             return None;
         }
-        let inside = (first.max(2)..(last + 1).min(count - 2)).filter(|&key| self.row.is_even(key, 2, 1));
-        let noise = middle_of(inside.map(|key| self.levels.at(key)).collect());
+        let noise = middle_of(self.levels.even_within(first.max(2)..(last + 1).min(count - 2)));
         let least = LEAST_RAD.max(TIMES_QUIET * quiet.min(noise / TIMES_QUIET));
         if noise < LEAST_SHARE * least || noise.is_infinite() {
             return None;

@@ -61,18 +61,30 @@ const CLEAR_GAIN: f64 = 3.3;
 
 /// A joint's roughness, and that of the joint on its other side, worked out when first asked for.
 pub(super) struct Alike<'a> {
-    scan: &'a Scan<'a>,
-    rough: &'a Roughness<'a>,
-    is_coarse: bool,
-    mirror: OnceCell<Option<Mirror<'a>>>,
-    /// For each key the largest roughness of the keys up to it, and of those from it on.
-    roughest: OnceCell<[Vec<f64>; 2]>,
+    pub(super) scan: &'a Scan<'a>,
+    pub(super) rough: &'a Roughness<'a>,
+    /// Whether poses are so few that a spike is not told by itself.
+    pub(super) is_coarse: bool,
+    other_side: OnceCell<Option<Roughness<'a>>>,
+    /// The largest roughness of the other side.
+    worst_there: OnceCell<f64>,
+    roughest: OnceCell<Largest>,
 }
 
 impl<'a> Alike<'a> {
     pub(super) fn new(scan: &'a Scan<'a>, rough: &'a Roughness<'a>) -> Self {
         let is_coarse = scan.outline().step_secs().is_some_and(|step_secs| step_secs > FINE_SECS);
-        Self { scan, rough, is_coarse, mirror: OnceCell::new(), roughest: OnceCell::new() }
+        let (other_side, worst_there, roughest) = (OnceCell::new(), OnceCell::new(), OnceCell::new());
+        Self { scan, rough, is_coarse, other_side, worst_there, roughest }
+    }
+
+    /// The joint on the other side of the body, where there is one.
+    pub(super) fn other_side(&self) -> Option<&Roughness<'a>> {
+        let of_mirror = || {
+            let other = self.scan.other(mirror_of(&self.scan.clip.skeleton, self.scan.joint)?)?;
+            Roughness::new(other, LEAST_KEYS)
+        };
+        self.other_side.get_or_init(of_mirror).as_ref()
     }
 
     /// How sure it is that `run` is a spike because the joint moves like that nowhere else, and the other side neither.
@@ -93,15 +105,13 @@ impl<'a> Alike<'a> {
             return None;
         }
         let elsewhere = self.roughest_beside(run);
-        let mirror = self.mirror.get_or_init(|| {
-            let other = scan.other(mirror_of(&scan.clip.skeleton, scan.joint)?)?;
-            Roughness::new(other, LEAST_KEYS).map(Mirror::new)
-        });
-        let is_alone = match mirror {
+        let is_alone = match self.other_side() {
             None => gain >= LEAST_GAIN_ALONE && run.peak >= TIMES_ELSEWHERE_ALONE * elsewhere,
-            Some(mirror) => {
+            Some(other) => {
+                let worst = || (0..other.len()).map(|key| other.residual(key)).fold(0.0, f64::max);
+                let worst = *self.worst_there.get_or_init(worst);
                 run.peak >= TIMES_ELSEWHERE * elsewhere
-                    && (run.peak >= TIMES_MIRROR * mirror.worst || !is_done(rough, run, &mirror.rough))
+                    && (run.peak >= TIMES_MIRROR * worst || !is_done(rough, run, other))
             }
         };
         is_alone.then_some(if gain >= CLEAR_GAIN { CONFIDENCE_CLEAR } else { CONFIDENCE })
@@ -145,32 +155,33 @@ impl Alike<'_> {
 
     /// The largest roughness of the joint, a run and the keys next to it left out.
     fn roughest_beside(&self, run: Run) -> f64 {
-        let [before, after] = self.roughest.get_or_init(|| {
-            let each: Vec<f64> = (0..self.rough.len()).map(|key| self.rough.residual(key)).collect();
-            let largest = |so_far: &mut f64, own: &f64| {
-                *so_far = so_far.max(*own);
-                Some(*so_far)
-            };
-            let mut after: Vec<f64> = each.iter().rev().scan(0.0, largest).collect();
-            after.reverse();
-            [each.iter().scan(0.0, largest).collect(), after]
-        });
-        let from_start = run.first.checked_sub(4).map_or(0.0, |key| before[key]);
-        from_start.max(after.get(run.last + 4).copied().unwrap_or(0.0))
+        let all =
+            || Largest::new(&(0..self.rough.len()).map(|key| self.rough.residual(key)).collect::<Vec<_>>());
+        self.roughest.get_or_init(all).outside(run.first.checked_sub(4), run.last + 4).unwrap_or(0.0)
     }
 }
 
-/// The joint on the other side.
-struct Mirror<'a> {
-    rough: Roughness<'a>,
-    /// Its largest roughness.
-    worst: f64,
+/// The largest of a row of numbers up to each, and from each on.
+pub(super) struct Largest {
+    before: Vec<f64>,
+    after: Vec<f64>,
 }
 
-impl<'a> Mirror<'a> {
-    fn new(rough: Roughness<'a>) -> Self {
-        let worst = (0..rough.len()).map(|key| rough.residual(key)).fold(0.0, f64::max);
-        Self { rough, worst }
+impl Largest {
+    pub(super) fn new(each: &[f64]) -> Self {
+        let larger = |so_far: &mut f64, own: &f64| {
+            *so_far = so_far.max(*own);
+            Some(*so_far)
+        };
+        let mut after: Vec<f64> = each.iter().rev().scan(f64::NEG_INFINITY, larger).collect();
+        after.reverse();
+        Self { before: each.iter().scan(f64::NEG_INFINITY, larger).collect(), after }
+    }
+
+    /// The largest of those up to `last_before` and from `first_after` on; `None` where there are none.
+    pub(super) fn outside(&self, last_before: Option<usize>, first_after: usize) -> Option<f64> {
+        let before = last_before.map(|index| self.before[index]);
+        before.into_iter().chain(self.after.get(first_after).copied()).reduce(f64::max)
     }
 }
 
@@ -189,37 +200,37 @@ struct Stretch {
 
 impl Stretch {
     fn of(rough: &Roughness<'_>, first: usize, last: usize) -> Self {
-        let keys = first - BESIDE..(last + BESIDE + 1).min(rough.len());
         let off = |key| (across(rough, first, last, key).reverse() * rough.pose(key)).plane_angles();
-        Self {
-            shape: shape(&keys.map(|key| rough.pose(key)).collect::<Vec<_>>()),
-            off: (first..=last).map(off).collect(),
-        }
+        Self { shape: shape_around(rough, first, last), off: (first..=last).map(off).collect() }
     }
 
     /// Whether the poses turn against each other by the same angles, as a share of `size_rad`, and lie off in the same planes.
     fn is_like(&self, other: &Self, size_rad: f64) -> bool {
-        let apart: f64 = self.shape.iter().zip(&other.shape).map(|(a, b)| (a - b).abs()).sum();
         let sum = |of: &dyn Fn(&Bivector, &Bivector) -> f64| -> f64 {
             self.off.iter().zip(&other.off).map(|(a, b)| of(a, b)).sum()
         };
         let [both, own, its] = [sum(&|a, b| a.dot(*b)), sum(&|a, _| a.dot(*a)), sum(&|_, b| b.dot(*b))];
-        apart < REPEAT_SHARE * size_rad * self.shape.len() as f64 && both > REPEAT_PLANE * (own * its).sqrt()
+        apart(&self.shape, &other.shape) < REPEAT_SHARE * size_rad && both > REPEAT_PLANE * (own * its).sqrt()
     }
 }
 
 /// Whether another joint does what this one does around a run, at any time.
 fn is_done(rough: &Roughness<'_>, run: Run, other: &Roughness<'_>) -> bool {
-    let keys = run.first - BESIDE..(run.last + BESIDE + 1).min(rough.len());
-    let count = keys.len();
-    let wanted = shape(&keys.map(|key| rough.pose(key)).collect::<Vec<_>>());
-    let Some(last) = other.len().checked_sub(count) else { return false };
+    let wanted = shape_around(rough, run.first, run.last);
     let others: Vec<Rotor> = (0..other.len()).map(|key| other.pose(key)).collect();
-    (0..=last).any(|start| {
-        let own = shape(&others[start..start + count]);
-        let apart: f64 = own.iter().zip(&wanted).map(|(a, b)| (a - b).abs()).sum();
-        apart < ALIKE_SHARE * run.peak * wanted.len() as f64
-    })
+    let count = (run.last + BESIDE + 1).min(rough.len()) - (run.first - BESIDE);
+    others.windows(count).any(|own| apart(&shape(own), &wanted) < ALIKE_SHARE * run.peak)
+}
+
+/// How a joint moves from some keys before a run to some keys after it.
+pub(super) fn shape_around(rough: &Roughness<'_>, first: usize, last: usize) -> Vec<f64> {
+    let keys = first - BESIDE..(last + BESIDE + 1).min(rough.len());
+    shape(&keys.map(|key| rough.pose(key)).collect::<Vec<_>>())
+}
+
+/// How far two shapes of as many poses are apart, in the mean of their turns, in radians.
+pub(super) fn apart(a: &[f64], b: &[f64]) -> f64 {
+    a.iter().zip(b).map(|(a, b)| (a - b).abs()).sum::<f64>() / a.len() as f64
 }
 
 /// The turns from each pose to each later one: they say how a stretch moves, but not about which axes.

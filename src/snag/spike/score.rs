@@ -11,14 +11,9 @@ use std::cell::OnceCell;
 
 use crate::rotor::{Bivector, Rotor, slerp};
 
-use super::super::mirror::mirror_of;
 use super::super::roughness::{Roughness, angle_of_dot};
-use super::super::scan::Scan;
-use super::alike::{BESIDE, shape};
-use super::{END_KEYS, LEAST_KEYS, LEAST_SPREAD_RAD, Run, START_KEYS, across, may_be_spike, weigh};
-
-/// With more poses a second a spike is told by its roughness alone.
-const FINE_SECS: f64 = 0.02;
+use super::alike::{Alike, BESIDE, Largest, apart, shape, shape_around};
+use super::{END_KEYS, LEAST_SPREAD_RAD, Run, START_KEYS, may_be_spike, offs, weigh};
 
 /// Longest run that is scored.
 const LONGEST: usize = 3;
@@ -49,8 +44,7 @@ const NEAR_KEYS: usize = 256;
 /// How unlike the other side is, where there is none.
 const UNLIKE_ALONE: f64 = 0.7;
 
-/// From this score on a run is told for that alone. Sound motion of files left out of the fit reached 2.8 (a wolf's gallop) and 1.7 (a
-/// backflip), and planted spikes seldom lie between: from 1.5 to 3 the share found falls by a hundredth at most.
+/// From this score on a run is told for that alone. Sound motion outside the fit reached 2.8 (a wolf's gallop) and 1.7 (a backflip), and planted spikes seldom lie between: from 1.5 to 3 the share found falls by a hundredth at most.
 const LEAST_SCORE: f64 = 3.2;
 
 /// What the roughness tells is left out below this score.
@@ -61,18 +55,16 @@ const SCORE_SCALE: f64 = 4.5;
 
 /// A joint with few poses, whose runs are scored.
 pub(super) struct Scorer<'a> {
-    scan: &'a Scan<'a>,
+    alike: &'a Alike<'a>,
     rough: &'a Roughness<'a>,
-    /// For each key the cosine of half the widest step up to it, and from it on.
-    widest: OnceCell<[Vec<f64>; 2]>,
-    mirror: OnceCell<Option<Vec<Rotor>>>,
+    /// Of each step the negative cosine of half its turn: the largest is that of the widest.
+    widest: OnceCell<Largest>,
 }
 
 impl<'a> Scorer<'a> {
     /// `None` where poses are so many that a spike is told by its roughness.
-    pub(super) fn new(scan: &'a Scan<'a>, rough: &'a Roughness<'a>) -> Option<Self> {
-        let is_coarse = scan.outline().step_secs().is_some_and(|step_secs| step_secs > FINE_SECS);
-        is_coarse.then(|| Self { scan, rough, widest: OnceCell::new(), mirror: OnceCell::new() })
+    pub(super) fn new(alike: &'a Alike<'a>) -> Option<Self> {
+        alike.is_coarse.then(|| Self { alike, rough: alike.rough, widest: OnceCell::new() })
     }
 
     /// The runs that are told by their score, with how sure that is, the surest first.
@@ -115,9 +107,14 @@ impl<'a> Scorer<'a> {
         if roughest < LEAST_ROUGHNESS * LEAST_OFF_RAD || last + END_KEYS >= rough.len() {
             return None;
         }
+        if size(rough, first, last) < LEAST_OFF_RAD {
+            return None;
+        }
         let run = weigh(rough, first, last);
-        let may_be = run.size >= LEAST_OFF_RAD && may_be_spike(self.scan, rough, run);
-        may_be.then(|| self.score(first, last, LEAST_SCORE)).flatten().map(|score| (run, score))
+        may_be_spike(self.alike.scan, rough, run)
+            .then(|| self.score(first, last, LEAST_SCORE))
+            .flatten()
+            .map(|score| (run, score))
     }
 
     /// The score of a run, if it is at least so much.
@@ -144,52 +141,35 @@ impl<'a> Scorer<'a> {
         (score >= least).then_some(score)
     }
 
+    /// The cosine of half the turn of the step to a key.
+    fn cosine(&self, key: usize) -> f64 {
+        self.rough.pose(key - 1).dot(self.rough.pose(key)).abs()
+    }
+
     /// The smaller of the steps into and out of a run, in radians.
     fn least_step(&self, first: usize, last: usize) -> f64 {
-        let cosine = |key: usize| self.rough.pose(key - 1).dot(self.rough.pose(key)).abs();
-        angle_of_dot(cosine(first).max(cosine(last + 1)))
+        angle_of_dot(self.cosine(first).max(self.cosine(last + 1)))
     }
 
     /// That beside the widest step outside the run.
     fn step(&self, first: usize, last: usize) -> f64 {
-        let rough = self.rough;
-        let cosine = |key: usize| rough.pose(key - 1).dot(rough.pose(key)).abs();
-        let [before, after] = self.widest.get_or_init(|| {
-            let each: Vec<f64> =
-                (0..rough.len()).map(|key| if key == 0 { 1.0 } else { cosine(key) }).collect();
-            let least = |so_far: &mut f64, own: &f64| {
-                *so_far = so_far.min(*own);
-                Some(*so_far)
-            };
-            let mut after: Vec<f64> = each.iter().rev().scan(1.0, least).collect();
-            after.reverse();
-            [each.iter().scan(1.0, least).collect(), after]
-        });
-        let outside = before[first - 1].min(after.get(last + 2).copied().unwrap_or(1.0));
-        log_ratio(self.least_step(first, last), angle_of_dot(outside))
+        let all = || {
+            let of = |key| if key == 0 { -1.0 } else { -self.cosine(key) };
+            Largest::new(&(0..self.rough.len()).map(of).collect::<Vec<f64>>())
+        };
+        let outside = self.widest.get_or_init(all).outside(Some(first - 1), last + 2).unwrap_or(-1.0);
+        log_ratio(self.least_step(first, last), angle_of_dot(-outside))
     }
 
     /// How unlike the nearest stretch of the other side moves, beside the size: 0 does the same, 1 is as unlike as counts.
     fn unlike_mirror(&self, first: usize, last: usize, size: f64) -> f64 {
-        let mirror = self.mirror.get_or_init(|| {
-            let other = self.scan.other(mirror_of(&self.scan.clip.skeleton, self.scan.joint)?)?;
-            let other = Roughness::new(other, LEAST_KEYS)?;
-            Some((0..other.len()).map(|key| other.pose(key)).collect())
-        });
-        let Some(mirror) = mirror else { return UNLIKE_ALONE };
-        let wanted = self.shape(first, last);
-        let apart = |poses: &[Rotor]| -> f64 {
-            shape(poses).iter().zip(&wanted).map(|(a, b)| (a - b).abs()).sum::<f64>() / wanted.len() as f64
-        };
+        let Some(mirror) = self.alike.other_side() else { return UNLIKE_ALONE };
+        let wanted = shape_around(self.rough, first, last);
         let end = (last + NEAR_KEYS).min(mirror.len());
-        let near = &mirror[first.saturating_sub(NEAR_KEYS).min(end)..end];
-        near.windows(last + 1 + 2 * BESIDE - first).map(apart).fold(size, f64::min)
-            / size.max(LEAST_SPREAD_RAD)
-    }
-
-    fn shape(&self, first: usize, last: usize) -> Vec<f64> {
-        let poses: Vec<Rotor> = (first - BESIDE..=last + BESIDE).map(|key| self.rough.pose(key)).collect();
-        shape(&poses)
+        let near: Vec<Rotor> =
+            (first.saturating_sub(NEAR_KEYS).min(end)..end).map(|key| mirror.pose(key)).collect();
+        let each = near.windows(last + 1 + 2 * BESIDE - first).map(|own| apart(&shape(own), &wanted));
+        each.fold(size, f64::min) / size.max(LEAST_SPREAD_RAD)
     }
 }
 
@@ -205,9 +185,7 @@ fn log_ratio(own: f64, other: f64) -> f64 {
 
 /// How far the keys of a run lie off the way across, in the median.
 fn size(rough: &Roughness<'_>, first: usize, last: usize) -> f64 {
-    let mut off: Vec<f64> =
-        (first..=last).map(|key| across(rough, first, last, key).turn_to(rough.pose(key))).collect();
-    off.sort_by(f64::total_cmp);
+    let off = offs(rough, first, last);
     off[off.len() / 2]
 }
 
@@ -274,40 +252,33 @@ fn dot(a: [f64; 4], b: [f64; 4]) -> f64 {
 
 #[cfg(test)]
 mod tests {
-    use std::sync::Arc;
-
-    use glam::DVec3;
-
     use super::super::super::outline::Outlines;
     use super::super::super::scan::View;
+    use super::super::super::tests::of_one_joint;
+    use super::super::{LEAST_KEYS, Scan};
     use super::*;
-    use crate::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times};
-    use crate::skeleton::{Joint, Skeleton};
+    use crate::clip::{Clip, Times};
+
+    fn at_24(keys: Vec<Rotor>) -> Clip {
+        of_one_joint(Times::Even { step_secs: 1.0 / 24.0, count: keys.len() }, 24.0, keys)
+    }
 
     /// A joint that swings as it will, with some keys off by an angle about one axis.
     fn swung(count: usize, off: &[usize], off_deg: f64) -> Clip {
-        let times = Times::Even { step_secs: 1.0 / 24.0, count };
         let keys = (0..count).map(|key| {
             let secs = key as f64 / 24.0;
             let swing = Bivector::new(0.6 * (6.3 * secs).sin(), 0.2 * (12.6 * secs).cos(), 0.1);
             let kick = if off.contains(&key) { off_deg.to_radians() } else { 0.0 };
             Rotor::from_plane_angles(swing) * Rotor::from_plane_angles(Bivector::new(0.0, 0.0, kick))
         });
-        let rotation = Some(RotationTrack::from_rotors(times.clone(), keys.collect::<Vec<_>>()));
-        Clip {
-            name: String::new(),
-            skeleton: Arc::new(Skeleton::new(vec![Joint::placed("arm", 0, None, DVec3::ZERO)]).unwrap()),
-            joints: vec![Arc::new(JointTracks { rotation, ..JointTracks::default() })],
-            duration_secs: times.at(count - 1),
-            grid: FrameGrid { times, rate: 24.0 },
-        }
+        at_24(keys.collect())
     }
 
     fn told(clip: &Clip) -> Vec<(usize, usize)> {
         let outlines = Outlines::new(1);
         let scan = Scan::new(View { clip, outlines: &outlines }, 0).unwrap();
         let rough = Roughness::new(scan, LEAST_KEYS).unwrap();
-        let found = Scorer::new(&scan, &rough).unwrap().find();
+        let found = Scorer::new(&Alike::new(&scan, &rough)).unwrap().find();
         found.into_iter().map(|(run, _)| (run.first, run.last)).collect()
     }
 
@@ -321,7 +292,6 @@ mod tests {
 
     #[test]
     fn a_curve_through_keys_of_a_cubic_leaves_nothing_of_them() {
-        let times = Times::Even { step_secs: 1.0 / 24.0, count: 16 };
         // About one axis, so that plane angles are numbers.
         let angle = |key: usize| {
             let time = key as f64 / 10.0;
@@ -329,11 +299,7 @@ mod tests {
         };
         let keys: Vec<Rotor> =
             (0..16).map(|key| Rotor::from_plane_angles(Bivector::new(0.0, 0.0, angle(key)))).collect();
-        let rotation = Some(RotationTrack::from_rotors(times, keys));
-        let clip = Clip {
-            joints: vec![Arc::new(JointTracks { rotation, ..JointTracks::default() })],
-            ..swung(16, &[], 0.0)
-        };
+        let clip = at_24(keys);
         let outlines = Outlines::new(1);
         let scan = Scan::new(View { clip: &clip, outlines: &outlines }, 0).unwrap();
         let rough = Roughness::new(scan, LEAST_KEYS).unwrap();
