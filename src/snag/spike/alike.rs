@@ -162,13 +162,13 @@ impl Alike<'_> {
 }
 
 /// The largest of a row of numbers up to each, and from each on.
-pub(super) struct Largest {
+struct Largest {
     before: Vec<f64>,
     after: Vec<f64>,
 }
 
 impl Largest {
-    pub(super) fn new(each: &[f64]) -> Self {
+    fn new(each: &[f64]) -> Self {
         let larger = |so_far: &mut f64, own: &f64| {
             *so_far = so_far.max(*own);
             Some(*so_far)
@@ -179,7 +179,7 @@ impl Largest {
     }
 
     /// The largest of those up to `last_before` and from `first_after` on; `None` where there are none.
-    pub(super) fn outside(&self, last_before: Option<usize>, first_after: usize) -> Option<f64> {
+    fn outside(&self, last_before: Option<usize>, first_after: usize) -> Option<f64> {
         let before = last_before.map(|index| self.before[index]);
         before.into_iter().chain(self.after.get(first_after).copied()).reduce(f64::max)
     }

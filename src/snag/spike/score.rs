@@ -7,12 +7,12 @@
 //! and all other runs of the planter's loops and of its captures cut into short clips. Which marks are worth it, and what they
 //! tell, was read from files left out one by one: each is judged by weights that have not seen it.
 
-use std::cell::OnceCell;
+use std::ops::Range;
 
 use crate::rotor::{Bivector, Rotor, slerp};
 
 use super::super::roughness::{Roughness, angle_of_dot};
-use super::alike::{Alike, BESIDE, Largest, apart, shape, shape_around};
+use super::alike::{Alike, BESIDE, apart, shape, shape_around};
 use super::{END_KEYS, LEAST_SPREAD_RAD, Run, START_KEYS, may_be_spike, offs, weigh};
 
 /// Longest run that is scored.
@@ -38,7 +38,8 @@ const EVEN: f64 = 6.75;
 const UNLIKE: f64 = 2.82;
 const BIAS: f64 = -10.06;
 
-/// Keys of the other side to both sides of a run that are looked at: some seconds, so that long clips cost no more for each run.
+/// Keys to both sides of a run that it is held against, of the joint and of its other side: some seconds, so that long clips cost no
+/// more for each run.
 const NEAR_KEYS: usize = 256;
 
 /// How unlike the other side is, where there is none.
@@ -57,14 +58,12 @@ const SCORE_SCALE: f64 = 4.5;
 pub(super) struct Scorer<'a> {
     alike: &'a Alike<'a>,
     rough: &'a Roughness<'a>,
-    /// Of each step the negative cosine of half its turn: the largest is that of the widest.
-    widest: OnceCell<Largest>,
 }
 
 impl<'a> Scorer<'a> {
     /// `None` where poses are so many that a spike is told by its roughness.
     pub(super) fn new(alike: &'a Alike<'a>) -> Option<Self> {
-        alike.is_coarse.then(|| Self { alike, rough: alike.rough, widest: OnceCell::new() })
+        alike.is_coarse.then_some(Self { alike, rough: alike.rough })
     }
 
     /// The runs that are told by their score, with how sure that is, the surest first.
@@ -151,26 +150,28 @@ impl<'a> Scorer<'a> {
         angle_of_dot(self.cosine(first).max(self.cosine(last + 1)))
     }
 
-    /// That beside the widest step outside the run.
+    /// That beside the widest step near by outside the run.
     fn step(&self, first: usize, last: usize) -> f64 {
-        let all = || {
-            let of = |key| if key == 0 { -1.0 } else { -self.cosine(key) };
-            Largest::new(&(0..self.rough.len()).map(of).collect::<Vec<f64>>())
-        };
-        let outside = self.widest.get_or_init(all).outside(Some(first - 1), last + 2).unwrap_or(-1.0);
-        log_ratio(self.least_step(first, last), angle_of_dot(-outside))
+        let Range { start, end } = near(first, last);
+        let outside = (start.max(1)..first).chain(last + 2..end.min(self.rough.len()));
+        let cosine = outside.map(|key| self.cosine(key)).fold(1.0, f64::min);
+        log_ratio(self.least_step(first, last), angle_of_dot(cosine))
     }
 
     /// How unlike the nearest stretch of the other side moves, beside the size: 0 does the same, 1 is as unlike as counts.
     fn unlike_mirror(&self, first: usize, last: usize, size: f64) -> f64 {
         let Some(mirror) = self.alike.other_side() else { return UNLIKE_ALONE };
         let wanted = shape_around(self.rough, first, last);
-        let end = (last + NEAR_KEYS).min(mirror.len());
-        let near: Vec<Rotor> =
-            (first.saturating_sub(NEAR_KEYS).min(end)..end).map(|key| mirror.pose(key)).collect();
+        let Range { start, end } = near(first, last);
+        let near: Vec<Rotor> = (start..end.min(mirror.len())).map(|key| mirror.pose(key)).collect();
         let each = near.windows(last + 1 + 2 * BESIDE - first).map(|own| apart(&shape(own), &wanted));
         each.fold(size, f64::min) / size.max(LEAST_SPREAD_RAD)
     }
+}
+
+/// The keys that a run is held against.
+fn near(first: usize, last: usize) -> Range<usize> {
+    first.saturating_sub(NEAR_KEYS)..last + NEAR_KEYS
 }
 
 /// Whether two runs share a key or lie side by side.
