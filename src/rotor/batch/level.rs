@@ -7,7 +7,7 @@ use pulp::Arch;
 pub struct Level(Option<Arch>);
 
 impl Level {
-    /// The widest instructions of this machine that the kernels are built for.
+    /// The widest instructions of this machine that the kernels are built for: AVX-512 or AVX2 on x86-64.
     #[must_use]
     pub fn best() -> Self {
         Self(Some(Arch::new()))

@@ -2,8 +2,8 @@
 //!
 //! The parts lie in *streams*: all scalar parts in a row, all parts in the plane yz in a row, and so on ([`Streams`]). Every
 //! kernel is one branch-free formula made of sums, products and polynomials, so that the compiler computes it for several
-//! rotations in one instruction. A [`Level`] says which instructions: AVX2 where the machine has it, else those that every
-//! x86-64 has. Both give the same bits, since no product is fused with a sum.
+//! rotations in one instruction. A [`Level`] says which instructions: AVX-512 or AVX2 where the machine has them, else
+//! those that every x86-64 has. All give the same bits, since no product is fused with a sum.
 //!
 //! The rare argument that a formula does not cover (a turn of many rounds, say) goes through the functions of
 //! [`crate::rotor`] instead; so every kernel takes whatever they take, unit rotors provided.

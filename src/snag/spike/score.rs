@@ -264,15 +264,17 @@ mod tests {
         of_one_joint(Times::Even { step_secs: 1.0 / 24.0, count: keys.len() }, 24.0, keys)
     }
 
-    /// A joint that swings as it will, with some keys off by an angle about one axis.
+    /// A key of a joint that swings as it will, off by an angle about one axis.
+    fn swinging(key: usize, off_deg: f64) -> Rotor {
+        let secs = key as f64 / 24.0;
+        let swing = Bivector::new(0.6 * (6.3 * secs).sin(), 0.2 * (12.6 * secs).cos(), 0.1);
+        Rotor::from_plane_angles(swing)
+            * Rotor::from_plane_angles(Bivector::new(0.0, 0.0, off_deg.to_radians()))
+    }
+
+    /// A joint that swings, with some keys off by an angle.
     fn swung(count: usize, off: &[usize], off_deg: f64) -> Clip {
-        let keys = (0..count).map(|key| {
-            let secs = key as f64 / 24.0;
-            let swing = Bivector::new(0.6 * (6.3 * secs).sin(), 0.2 * (12.6 * secs).cos(), 0.1);
-            let kick = if off.contains(&key) { off_deg.to_radians() } else { 0.0 };
-            Rotor::from_plane_angles(swing) * Rotor::from_plane_angles(Bivector::new(0.0, 0.0, kick))
-        });
-        at_24(keys.collect())
+        at_24((0..count).map(|key| swinging(key, if off.contains(&key) { off_deg } else { 0.0 })).collect())
     }
 
     fn told(clip: &Clip) -> Vec<(usize, usize)> {
@@ -289,6 +291,18 @@ mod tests {
         for off in [&[12][..], &[12, 13], &[12, 13, 14]] {
             assert_eq!(told(&swung(30, off, 25.0)), [(12, off[off.len() - 1])], "{off:?}");
         }
+    }
+
+    #[test]
+    fn a_wider_jump_elsewhere_in_a_long_clip_hides_no_spike() {
+        let at = 100 + 2 * NEAR_KEYS;
+        let off = |key: usize| match key {
+            0..100 => 120.0,
+            _ if key == at => 12.0,
+            _ => 0.0,
+        };
+        let keys = (0..at + NEAR_KEYS).map(|key| swinging(key, off(key))).collect();
+        assert_eq!(told(&at_24(keys)), [(at, at)]);
     }
 
     #[test]
