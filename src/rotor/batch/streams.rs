@@ -74,7 +74,7 @@ impl<F: Copy + Default, const N: usize> Streams<F, N> {
     #[must_use]
     pub fn get(&self, index: usize) -> [F; N] {
         assert!(index < self.len, "expected a row below {}, found {index}", self.len);
-        std::array::from_fn(|part| self.numbers[self.start + part * self.stride + index])
+        std::array::from_fn(|part| self.numbers[self.place(part) + index])
     }
 
     /// Writes the parts of one row.
@@ -84,15 +84,20 @@ impl<F: Copy + Default, const N: usize> Streams<F, N> {
     pub fn set(&mut self, index: usize, parts: [F; N]) {
         assert!(index < self.len, "expected a row below {}, found {index}", self.len);
         for (part, value) in parts.into_iter().enumerate() {
-            self.numbers[self.start + part * self.stride + index] = value;
+            let place = self.place(part) + index;
+            self.numbers[place] = value;
         }
     }
 
     /// All streams, to read.
     #[must_use]
     pub fn parts(&self) -> Parts<'_, F, N> {
-        let numbers = &self.numbers[self.start..];
-        std::array::from_fn(|part| &numbers[part * self.stride..part * self.stride + self.len])
+        std::array::from_fn(|part| &self.numbers[self.place(part)..][..self.len])
+    }
+
+    /// Where a stream begins.
+    fn place(&self, part: usize) -> usize {
+        self.start + part * self.stride
     }
 
     /// All streams, to write.

@@ -45,7 +45,8 @@ const NEAR_KEYS: usize = 256;
 /// How unlike the other side is, where there is none.
 const UNLIKE_ALONE: f64 = 0.7;
 
-/// From this score on a run is told for that alone. Sound motion outside the fit reached 2.8 (a wolf's gallop) and 1.7 (a backflip), and planted spikes seldom lie between: from 1.5 to 3 the share found falls by a hundredth at most.
+/// From this score on a run is told for that alone. Sound motion outside the fit reached 2.8 (a wolf's gallop) and 1.7 (a backflip),
+/// and planted spikes seldom lie between: from 1.5 to 3 the share found falls by a hundredth at most.
 const LEAST_SCORE: f64 = 3.2;
 
 /// What the roughness tells is left out below this score.
@@ -57,13 +58,12 @@ const SCORE_SCALE: f64 = 4.5;
 /// A joint with few poses, whose runs are scored.
 pub(super) struct Scorer<'a> {
     alike: &'a Alike<'a>,
-    rough: &'a Roughness<'a>,
 }
 
 impl<'a> Scorer<'a> {
     /// `None` where poses are so many that a spike is told by its roughness.
     pub(super) fn new(alike: &'a Alike<'a>) -> Option<Self> {
-        alike.is_coarse.then_some(Self { alike, rough: alike.rough })
+        alike.is_coarse.then_some(Self { alike })
     }
 
     /// The runs that are told by their score, with how sure that is, the surest first.
@@ -71,8 +71,8 @@ impl<'a> Scorer<'a> {
         let mut scored: Vec<(Run, f64)> = Vec::new();
         let mut key = START_KEYS + 1;
         loop {
-            key = self.rough.next_rough(key);
-            if key + END_KEYS >= self.rough.len() {
+            key = self.alike.rough.next_rough(key);
+            if key + END_KEYS >= self.alike.rough.len() {
                 break;
             }
             scored.extend((key..key + LONGEST).filter_map(|last| self.told(key, last)));
@@ -101,7 +101,7 @@ impl<'a> Scorer<'a> {
     }
 
     fn told(&self, first: usize, last: usize) -> Option<(Run, f64)> {
-        let rough = self.rough;
+        let rough = self.alike.rough;
         let roughest = (first..=last.min(rough.len() - 1)).map(|key| rough.residual(key)).fold(0.0, f64::max);
         if roughest < LEAST_ROUGHNESS * LEAST_OFF_RAD || last + END_KEYS >= rough.len() {
             return None;
@@ -118,7 +118,7 @@ impl<'a> Scorer<'a> {
 
     /// The score of a run, if it is at least so much.
     fn score(&self, first: usize, last: usize, least: f64) -> Option<f64> {
-        let rough = self.rough;
+        let rough = self.alike.rough;
         if first < SIDE || last + SIDE >= rough.len() {
             return None;
         }
@@ -142,7 +142,7 @@ impl<'a> Scorer<'a> {
 
     /// The cosine of half the turn of the step to a key.
     fn cosine(&self, key: usize) -> f64 {
-        self.rough.pose(key - 1).dot(self.rough.pose(key)).abs()
+        self.alike.rough.pose(key - 1).dot(self.alike.rough.pose(key)).abs()
     }
 
     /// The smaller of the steps into and out of a run, in radians.
@@ -153,7 +153,7 @@ impl<'a> Scorer<'a> {
     /// That beside the widest step near by outside the run.
     fn step(&self, first: usize, last: usize) -> f64 {
         let Range { start, end } = near(first, last);
-        let outside = (start.max(1)..first).chain(last + 2..end.min(self.rough.len()));
+        let outside = (start.max(1)..first).chain(last + 2..end.min(self.alike.rough.len()));
         let cosine = outside.map(|key| self.cosine(key)).fold(1.0, f64::min);
         log_ratio(self.least_step(first, last), angle_of_dot(cosine))
     }
@@ -161,7 +161,7 @@ impl<'a> Scorer<'a> {
     /// How unlike the nearest stretch of the other side moves, beside the size: 0 does the same, 1 is as unlike as counts.
     fn unlike_mirror(&self, first: usize, last: usize, size: f64) -> f64 {
         let Some(mirror) = self.alike.other_side() else { return UNLIKE_ALONE };
-        let wanted = shape_around(self.rough, first, last);
+        let wanted = shape_around(self.alike.rough, first, last);
         let Range { start, end } = near(first, last);
         let near: Vec<Rotor> = (start..end.min(mirror.len())).map(|key| mirror.pose(key)).collect();
         let each = near.windows(last + 1 + 2 * BESIDE - first).map(|own| apart(&shape(own), &wanted));
