@@ -201,11 +201,8 @@ fn kinematics<F: Real>(
     let bones: Vec<Bone<'_, F>> = (0..JOINTS).map(bone).collect();
     let calls = KINEMATIC_FRAMES / TREE_ROWS / TREE_TILES;
     let mut worlds = vec![[[[narrowed(0.0); TREE_ROWS]; 7]; TREE_TILES]; JOINTS * calls];
-    for (name, level, are_kept) in [
-        ("ours, baseline", Level::baseline(), false),
-        ("ours", Level::best(), false),
-        ("ours, kept", Level::best(), true),
-    ] {
+    let levels = Level::all().into_iter().map(|(name, level)| (format!("ours, {name}"), level, false));
+    for (name, level, are_kept) in levels.chain([("ours, kept".to_owned(), Level::best(), true)]) {
         group.bench_function(name, |bencher| {
             bencher.iter(|| {
                 for call in 0..calls {

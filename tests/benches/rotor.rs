@@ -22,12 +22,6 @@ fn count() -> usize {
     std::env::var("ROTATIONS").ok().and_then(|count| count.parse().ok()).unwrap_or(1_000_000)
 }
 
-const LEVELS: [&str; 2] = ["ours, baseline", "ours"];
-
-fn level(name: &str) -> Level {
-    if name == "ours" { Level::best() } else { Level::baseline() }
-}
-
 /// Numbers from 0 to 1 in a fixed order without a pattern (a Weyl sequence, mixed).
 struct Numbers(u64);
 
@@ -103,11 +97,12 @@ fn peer<A, T: Clone>(group: &mut Group<'_>, name: &str, arguments: &[A], zero: T
     });
 }
 
-/// One of our kernels at both levels.
+/// One of our kernels at all levels of this machine.
 fn ours<F: Real, const N: usize>(group: &mut Group<'_>, mut kernel: impl FnMut(Level, &mut Streams<F, N>)) {
     let mut out = Streams::zeros(count());
-    for name in LEVELS {
-        group.bench_function(name, |bencher| bencher.iter(|| kernel(level(name), black_box(&mut out))));
+    for (name, level) in Level::all() {
+        let name = format!("ours, {name}");
+        group.bench_function(name, |bencher| bencher.iter(|| kernel(level, black_box(&mut out))));
     }
 }
 

@@ -4,11 +4,6 @@ use turnwright::rotor::{Axis, Bivector, EndRates, EulerOrder, RotationSpline, Ro
 
 use crate::support::{Distance, Tally, list, number, numbers};
 
-/// A level and its name.
-type Named = (&'static str, fn() -> Level);
-
-const LEVELS: [Named; 2] = [("baseline", Level::baseline), ("best", Level::best)];
-
 /// Lengths around the blocks that the kernels work in.
 const COUNTS: [usize; 7] = [0, 1, 63, 64, 65, 128, 1000];
 
@@ -58,12 +53,12 @@ fn accuracy<F: Real + Into<f64>>(
     allowed: f64,
     log_allowed: f64,
 ) {
-    for (name, level) in LEVELS {
+    for (name, level) in Level::all() {
         let known = cases::<9, 4>(width, "slerp");
         let columns = column(&known.iter().map(|case| case.1).collect::<Vec<_>>(), narrowed);
         let mut out = Streams::zeros(known.len());
         let (a, b) = (views(&columns[..4]), views(&columns[4..8]));
-        batch::slerp(level(), a, b, &columns[8], out.parts_mut());
+        batch::slerp(level, a, b, &columns[8], out.parts_mut());
         let mut tally = Tally::new("bulk slerp");
         for (row, (kind, arguments, exact)) in known.iter().enumerate() {
             let [turn, length] = rotor_error(out.get(row).map(Into::into), *exact);
@@ -73,7 +68,7 @@ fn accuracy<F: Real + Into<f64>>(
 
         let known = cases::<3, 4>(width, "exp");
         let columns = column(&known.iter().map(|case| case.1).collect::<Vec<_>>(), narrowed);
-        batch::exp(level(), views(&columns), out.parts_mut());
+        batch::exp(level, views(&columns), out.parts_mut());
         let mut tally = Tally::new("bulk exp");
         for (row, (kind, arguments, exact)) in known.iter().enumerate() {
             let [turn, length] = rotor_error(out.get(row).map(Into::into), *exact);
@@ -86,7 +81,7 @@ fn accuracy<F: Real + Into<f64>>(
         let known = cases::<4, 3>(width, "log");
         let columns = column(&known.iter().map(|case| case.1).collect::<Vec<_>>(), narrowed);
         let mut out = Streams::zeros(known.len());
-        batch::log(level(), views(&columns), out.parts_mut());
+        batch::log(level, views(&columns), out.parts_mut());
         let mut tally = Tally::new("bulk log");
         for (row, (kind, arguments, exact)) in known.iter().enumerate() {
             let error = angles_error(out.get(row).map(Into::into), *exact);
@@ -173,16 +168,16 @@ fn kernels_agree_with_the_functions_for_one_rotor() {
             (0..count).map(|_| [numbers.next(), numbers.next(), numbers.next()]).collect();
         let (left, right) = (rows(&a), rows(&b));
         let places = Streams::from_rows(points.iter().copied());
-        for (name, level) in LEVELS {
+        for (name, level) in Level::all() {
             let mut out = Streams::zeros(count);
-            batch::compose(level(), left.parts(), right.parts(), out.parts_mut());
+            batch::compose(level, left.parts(), right.parts(), out.parts_mut());
             for row in 0..count {
                 assert_eq!(rotor(out.get(row)), a[row] * b[row], "{name} row {row}");
             }
             let mut turned = Streams::zeros(count);
-            batch::apply(level(), left.parts(), places.parts(), turned.parts_mut());
+            batch::apply(level, left.parts(), places.parts(), turned.parts_mut());
             let mut turns = vec![0.0; count];
-            batch::turns(level(), left.parts(), right.parts(), &mut turns);
+            batch::turns(level, left.parts(), right.parts(), &mut turns);
             for row in 0..count {
                 let exact = a[row].apply(points[row].into()).to_array();
                 assert!(turned.get(row).distance_to(&exact) < 1e-15, "{name} row {row}");
@@ -211,9 +206,9 @@ fn bulk_squad_goes_wherever_squad_goes() {
     let t: Vec<f64> = (0..1000).map(|_| 0.5 + 0.5 * numbers.next()).collect();
     let streams = four.each_ref().map(|rotors| rows(rotors));
     let mut long_ways = 0;
-    for (name, level) in LEVELS {
+    for (name, level) in Level::all() {
         let mut out = Streams::zeros(1000);
-        batch::squad(level(), streams.each_ref().map(Streams::parts), &t, out.parts_mut());
+        batch::squad(level, streams.each_ref().map(Streams::parts), &t, out.parts_mut());
         for row in 0..1000 {
             let [a, inner_a, inner_b, b] = four.each_ref().map(|rotors| rotors[row]);
             long_ways += usize::from(a.dot(b) < 0.0);
@@ -240,9 +235,9 @@ fn near_the_middle_the_short_form_is_slerp() {
     b[8] = a[8] * Rotor::new(0.0, 0.0, 1.0, 0.0);
     let t: Vec<f64> =
         (0..1000).map(|row| 0.5 + if row % 2 == 0 { 1e-10 * numbers.next() } else { 0.0 }).collect();
-    for (name, level) in LEVELS {
+    for (name, level) in Level::all() {
         let mut out = Streams::zeros(1000);
-        batch::slerp_at_middle(level(), rows(&a).parts(), rows(&b).parts(), &t, out.parts_mut());
+        batch::slerp_at_middle(level, rows(&a).parts(), rows(&b).parts(), &t, out.parts_mut());
         for row in 0..1000 {
             let (found, exact) = (rotor(out.get(row)), slerp(a[row], b[row], t[row]));
             // Halfway round a half turn either way is right.
@@ -323,9 +318,9 @@ fn a_tree_is_the_product_and_the_place_in_the_parents_frame_joint_by_joint() {
         .collect();
     let alone = placed_alone(&parents, &turns, &places);
     let mut both = vec![];
-    for (name, level) in LEVELS {
+    for (name, level) in Level::all() {
         let mut worlds = vec![[[[0.0; TREE_ROWS]; 7]; TREE_TILES]; parents.len()];
-        batch::place_tree(level(), &bones, tiles.each_ref().map(Vec::as_slice), &mut worlds);
+        batch::place_tree(level, &bones, tiles.each_ref().map(Vec::as_slice), &mut worlds);
         for (joint, alone) in alone.iter().enumerate() {
             for (time, (turn, place)) in alone.iter().enumerate() {
                 let found = worlds[joint][time / TREE_ROWS].map(|column| column[time % TREE_ROWS]);
@@ -386,11 +381,11 @@ fn euler_kernels_agree_in_all_orders() {
         }
         angles.push([1e9, 0.2, 0.3]);
         let given = Streams::from_rows(angles.iter().copied());
-        for (name, level) in LEVELS {
+        for (name, level) in Level::all() {
             let mut turned = Streams::zeros(angles.len());
-            batch::euler_rotors(level(), order, given.parts(), turned.parts_mut());
+            batch::euler_rotors(level, order, given.parts(), turned.parts_mut());
             let mut back = Streams::zeros(angles.len());
-            batch::euler_angles(level(), order, turned.parts(), 0.25, back.parts_mut());
+            batch::euler_angles(level, order, turned.parts(), 0.25, back.parts_mut());
             for (row, angles) in angles.iter().enumerate() {
                 let exact = order.to_rotor(*angles);
                 let found = rotor(turned.get(row));
@@ -422,16 +417,22 @@ fn at_a_pole_the_last_angle_is_the_one_asked_for() {
 }
 
 #[test]
-fn both_levels_give_the_same_bits() {
-    fn bits<const N: usize>(run: impl Fn(Level, &mut Streams<f64, N>)) {
-        let [plain, wide] = LEVELS.map(|(_, level)| {
+fn all_levels_give_the_same_bits() {
+    fn bits<F: Real, const N: usize>(run: impl Fn(Level, &mut Streams<F, N>), bits: impl Fn(F) -> u64) {
+        let of_level = |level| {
             let mut out = Streams::zeros(1000);
-            run(level(), &mut out);
-            out
-        });
-        for row in 0..1000 {
-            assert_eq!(plain.get(row).map(f64::to_bits), wide.get(row).map(f64::to_bits), "row {row}");
+            run(level, &mut out);
+            (0..1000).map(|row| out.get(row).map(&bits)).collect::<Vec<_>>()
+        };
+        let plain = of_level(Level::baseline());
+        for (name, level) in Level::all() {
+            for (row, (found, plain)) in of_level(level).iter().zip(&plain).enumerate() {
+                assert_eq!(found, plain, "{name} row {row}");
+            }
         }
+    }
+    fn wide<const N: usize>(run: impl Fn(Level, &mut Streams<f64, N>)) {
+        bits(run, f64::to_bits);
     }
     let mut numbers = Numbers(4);
     let (a, b) = (rows(&numbers.rotors(1000)), rows(&numbers.rotors(1000)));
@@ -439,23 +440,27 @@ fn both_levels_give_the_same_bits() {
     let t: Vec<f64> = (0..1000).map(|_| 0.5 + 0.5 * numbers.next()).collect();
     let angles: Streams<f64, 3> =
         Streams::from_rows((0..1000).map(|_| std::array::from_fn(|_| numbers.next())));
-    bits(|level, out: &mut Streams<f64, 4>| batch::slerp(level, a.parts(), b.parts(), &t, out.parts_mut()));
-    bits(|level, out: &mut Streams<f64, 4>| {
+    wide(|level, out: &mut Streams<f64, 4>| batch::slerp(level, a.parts(), b.parts(), &t, out.parts_mut()));
+    wide(|level, out: &mut Streams<f64, 4>| {
         batch::squad(level, [a.parts(), inner_a.parts(), inner_b.parts(), b.parts()], &t, out.parts_mut());
     });
     let middles: Vec<f64> = t.iter().map(|t| 0.5 + 1e-11 * t).collect();
-    bits(|level, out: &mut Streams<f64, 4>| {
+    wide(|level, out: &mut Streams<f64, 4>| {
         batch::slerp_at_middle(level, a.parts(), b.parts(), &middles, out.parts_mut());
     });
-    bits(|level, out: &mut Streams<f64, 4>| batch::exp(level, angles.parts(), out.parts_mut()));
-    bits(|level, out: &mut Streams<f64, 3>| batch::log(level, a.parts(), out.parts_mut()));
-    bits(|level, out: &mut Streams<f64, 4>| batch::compose(level, a.parts(), b.parts(), out.parts_mut()));
-    bits(|level, out: &mut Streams<f64, 3>| batch::apply(level, a.parts(), angles.parts(), out.parts_mut()));
+    wide(|level, out: &mut Streams<f64, 4>| batch::exp(level, angles.parts(), out.parts_mut()));
+    wide(|level, out: &mut Streams<f64, 3>| batch::log(level, a.parts(), out.parts_mut()));
+    wide(|level, out: &mut Streams<f64, 4>| batch::compose(level, a.parts(), b.parts(), out.parts_mut()));
+    wide(|level, out: &mut Streams<f64, 3>| batch::apply(level, a.parts(), angles.parts(), out.parts_mut()));
+    wide(|level, out: &mut Streams<f64, 1>| {
+        let [turns] = out.parts_mut();
+        batch::turns(level, a.parts(), b.parts(), turns);
+    });
     for order in EulerOrder::ALL {
-        bits(|level, out: &mut Streams<f64, 4>| {
+        wide(|level, out: &mut Streams<f64, 4>| {
             batch::euler_rotors(level, order, angles.parts(), out.parts_mut());
         });
-        bits(|level, out: &mut Streams<f64, 3>| {
+        wide(|level, out: &mut Streams<f64, 3>| {
             batch::euler_angles(level, order, a.parts(), 0.0, out.parts_mut());
         });
     }
@@ -464,12 +469,10 @@ fn both_levels_give_the_same_bits() {
     };
     let (a, b) = (narrow(&a), narrow(&b));
     let t: Vec<f32> = t.iter().map(|t| *t as f32).collect();
-    let [plain, wide] = LEVELS.map(|(_, level)| {
-        let mut out = Streams::zeros(1000);
-        batch::slerp(level(), a.parts(), b.parts(), &t, out.parts_mut());
-        out
-    });
-    assert!((0..1000).all(|row| plain.get(row).map(f32::to_bits) == wide.get(row).map(f32::to_bits)));
+    let slerp = |level, out: &mut Streams<f32, 4>| {
+        batch::slerp(level, a.parts(), b.parts(), &t, out.parts_mut());
+    };
+    bits(slerp, |part| u64::from(part.to_bits()));
 }
 
 #[test]

@@ -20,18 +20,6 @@ pub(super) const SINE_OVER_ANGLE_F64: [f64; 9] = [
 pub(super) const SINE_OVER_ANGLE_F32: [f32; 5] =
     [1.0, -0.16666666, 0.0083332425, -0.0001982274, 2.6347564e-06];
 
-/// `sin √y / √y`, 0 ≤ y ≤ (π/2)², times `√y` within 1.1e-16: factors of rising powers.
-pub(super) const SHORT_SINE_F64: [f64; 8] = [
-    1.0,
-    -0.1666666666666581,
-    0.00833333333326288,
-    -0.0001984126982009407,
-    2.7557316076992292e-06,
-    -2.505185149611104e-08,
-    1.6047301170202392e-10,
-    -7.364646141625561e-13,
-];
-
 /// `cos √y`, 0 ≤ y ≤ (π/2)²: factors of rising powers.
 pub(super) const COSINE_F64: [f64; 9] = [
     1.0,
@@ -74,6 +62,14 @@ pub(super) const MIDDLE_RATE_F64: [f64; 6] = [
     0.00013734772811038222,
     0.002310913866974811,
 ];
+
+/// `tan(α/4)/α` of `α²`, 0 to π²: factors of rising powers above the line.
+pub(super) const QUARTER_TANGENT_ABOVE: [f64; 4] =
+    [0.25, -0.002004455158941089, 2.740335121659926e-06, -4.5687412797391243e-10];
+
+/// `tan(α/4)/α` of `α²`, 0 to π²: factors of rising powers below the line.
+pub(super) const QUARTER_TANGENT_BELOW: [f64; 4] =
+    [1.0, -0.02885115396909749, 9.1193714842523e-05, -5.0897117287761236e-08];
 
 /// `θ²/(1 − d)` of `d = cos θ`, 0 ≤ d ≤ 1: factors of rising powers above the line, and below it all but the last, which is 1.
 pub(super) const SQUARE_OVER_REST_F64: Quotient<f64, 7, 6> = Quotient {

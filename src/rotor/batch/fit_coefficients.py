@@ -4,9 +4,9 @@
     python3 src/rotor/batch/fit_coefficients.py
 
 Each polynomial is a Chebyshev fit in 60 digits, of the function without its value at 0, which stays exact; each quotient meets
-its function at the Chebyshev points. `SHORT_SINE` is the polynomial whose *sine* errs least (exchange of points, Remez 1934): where
-the angle is small its factor may be rougher, as the angle multiplies it, and so one power less is enough where a single sine is asked, as in
-exp; slerp adds two. The error printed is the largest of the fit itself, before its factors are rounded to the machine's numbers.
+its function at the Chebyshev points. `QUARTER_TANGENT` is the quotient from which half the angle comes with the least error (exchange of points,
+Remez 1934), both values at 0 kept exact: exp takes cosine and sine from it. The error printed is the largest of the fit itself, before its
+factors are rounded to the machine's numbers.
 
 Why quotients of `d = cos θ` where the angle comes out of a cosine: 6 over 6 does what takes a polynomial of degree 18, its two halves don't
 wait for each other, and all its factors are above 0, so that nothing cancels (in `1 − d` they alternate and lose two digits).
@@ -59,7 +59,6 @@ HAIR = mp.mpf("1.000001")
 # name, what it is, function, end of the range, degree for f64 and f32 (None: no f32 kernel needs it).
 FITS = [
     ("SINE_OVER_ANGLE", "`sin √y / √y`, 0 ≤ y ≤ (π/2)²", sine_over_angle, QUARTER, 8, 4),
-    ("SHORT_SINE", "`sin √y / √y`, 0 ≤ y ≤ (π/2)², times `√y` within 1.1e-16", sine_over_angle, QUARTER, 7, None),
     ("COSINE", "`cos √y`, 0 ≤ y ≤ (π/2)²", cosine, QUARTER, 8, 5),
     ("ARC_TANGENT", "`atan √y / √y`, 0 ≤ y ≤ tan²(π/8)", arc_tangent, EIGHTH_TANGENT, 12, None),
     ("MIDDLE_RATE", "`θ/(2 sin θ/2)` of `u = 1 − cos θ`, 0 ≤ u ≤ 1", middle_rate, mp.mpf(1), 5, None),
@@ -81,16 +80,36 @@ def chebyshev(function, end, degree):
     return factors[::-1], error * end
 
 
-def least_sine(function, end, degree):
-    """Factors of rising powers of (f(y) − 1)/y for f = sin √y/√y, with the error of √y·f, the sine, as small as can be, and that error."""
-    weight = lambda y: y * mp.sqrt(y)
-    grid = [end * (1 - mp.cos(mp.pi * i / 2000)) / 2 for i in range(1, 2001)]
-    wanted = [(function(y) - 1) / y for y in grid]
-    points = [(2000 * (2 * i + 1)) // (2 * degree + 2) for i in range(degree + 1)]
+def quarter_tangent(y):
+    """tan(α/4)/α with y = α²: a quarter at 0."""
+    return mp.mpf(1) / 4 if y == 0 else mp.tan(mp.sqrt(y) / 4) / mp.sqrt(y)
+
+
+def least_half_angle(degree):
+    """Factors of rising powers of a and b, 1/4 and 1 the first, with α·a/b the tangent of α/4 for α² from 0 to π², and the largest error of α/2 from it."""
+    end = mp.pi**2 * HAIR
+    grid = [end * (1 - mp.cos(mp.pi * i / 1500)) / 2 for i in range(1, 1501)]
+    exact = [quarter_tangent(y) for y in grid]
+    # An error by a share in the tangent of y is one of sin 2y times that share in 2y.
+    weights = [mp.sin(mp.sqrt(y) / 2) for y in grid]
+    points = [(1500 * (2 * i + 1)) // (4 * degree + 2) for i in range(2 * degree + 1)]
+    level = mp.mpf(0)
     while True:
-        rows = [[grid[k] ** p for p in range(degree)] + [(-1) ** i / weight(grid[k])] for i, k in enumerate(points)]
-        *factors, _ = mp.lu_solve(mp.matrix(rows), mp.matrix([wanted[k] for k in points]))
-        errors = [(mp.polyval(factors[::-1], y) - r) * weight(y) for y, r in zip(grid, wanted)]
+        # weight · (a/(f·b) − 1) = ±level, times b. The product of level and b is not linear: a few rounds about the level before.
+        for _ in range(6):
+            rows, wanted = [], []
+            for i, k in enumerate(points):
+                sign, share = (-1) ** i, weights[k] / exact[k]
+                powers = [grid[k] ** power for power in range(1, degree + 1)]
+                beside = weights[k] + sign * level
+                rows.append([share * power for power in powers] + [-beside * power for power in powers] + [-sign])
+                wanted.append(beside - share / 4)
+            solved = mp.lu_solve(mp.matrix(rows), mp.matrix(wanted))
+            level += solved[2 * degree]
+        above = [mp.mpf(1) / 4, *solved[:degree]]
+        below = [mp.mpf(1), *solved[degree : 2 * degree]]
+        value = lambda y: mp.polyval(above[::-1], y) / mp.polyval(below[::-1], y)
+        errors = [(value(y) / f - 1) * weight for y, f, weight in zip(grid, exact, weights)]
         # The largest error of each stretch of one sign. There are as many stretches as unknowns.
         stretches = [0]
         for k in range(1, len(grid)):
@@ -98,10 +117,10 @@ def least_sine(function, end, degree):
                 stretches.append(k)
             elif abs(errors[k]) > abs(errors[stretches[-1]]):
                 stretches[-1] = k
-        if len(stretches) != degree + 1:
-            raise ValueError(f"{len(stretches)} stretches for {degree + 1} unknowns")
+        if len(stretches) != 2 * degree + 1:
+            raise ValueError(f"{len(stretches)} stretches for {2 * degree + 1} unknowns")
         if stretches == points:
-            return factors, max(abs(error) for error in errors)
+            return above, below, max(abs(error) for error in errors)
         points = stretches
 
 
@@ -149,8 +168,7 @@ for name, meaning, function, end, *degrees in FITS:
     for kind, degree in zip(("f64", "f32"), degrees):
         if degree is None:
             continue
-        fit = least_sine if name == "SHORT_SINE" else chebyshev
-        factors, error = fit(function, end * HAIR, degree)
+        factors, error = chebyshev(function, end * HAIR, degree)
         print(f"{name} {kind}: degree {degree}, error {mp.nstr(error, 3)}")
         rising = [at_zero, *factors]
         lines.append(f"/// {meaning}: factors of rising powers.")
@@ -158,6 +176,15 @@ for name, meaning, function, end, *degrees in FITS:
         lines.extend(f"    {text(kind, factor)}," for factor in rising)
         lines.append("];")
         lines.append("")
+
+*quarters, error = least_half_angle(3)
+print(f"QUARTER_TANGENT f64: 3 over 3, error of half the angle {mp.nstr(error, 3)}")
+for place, factors in zip(("above", "below"), quarters):
+    lines.append(f"/// `tan(α/4)/α` of `α²`, 0 to π²: factors of rising powers {place} the line.")
+    lines.append(f"pub(super) const QUARTER_TANGENT_{place.upper()}: [f64; {len(factors)}] = [")
+    lines.extend(f"    {text('f64', factor)}," for factor in factors)
+    lines.append("];")
+    lines.append("")
 
 for name, meaning, function, *degrees in QUOTIENTS:
     for kind, degree in zip(("f64", "f32"), degrees):

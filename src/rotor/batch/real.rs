@@ -38,15 +38,14 @@ pub trait Polynomials:
     /// `factor · sin √y/√y`, 0 to (π/2)²: what is beyond `factor` itself is added last, so that it is off by one rounding and
     /// little more.
     fn times_sine_over_angle(self, factor: Self) -> Self;
-    /// `cos(α/2)` and `−sin(α/2)/α` of `α²`, 0 to π²: the parts of a rotor that turns by `α`. The sine is within 1.1e-16 in `f64`, with a
-    /// power less than where two are added.
+    /// `cos(α/2)` and `−sin(α/2)/α` of `α²`, 0 to π²: the parts of a rotor that turns by `α`.
     fn parts_of_turn(self) -> (Self, Self);
     /// `cos √y`, 0 to (π/2)².
     fn cosine(self) -> Self;
 }
 
 macro_rules! polynomials {
-    ($kind:ty, $narrow:expr, $square:ident, $angle:ident, $sine:ident, $short_sine:ident, $cosine:ident) => {
+    ($kind:ty, $narrow:expr, $square:ident, $angle:ident, $sine:ident, $cosine:ident, $turn:ident) => {
         impl Polynomials for $kind {
             const ZERO: Self = 0.0;
             const ONE: Self = 1.0;
@@ -83,19 +82,7 @@ macro_rules! polynomials {
             }
             #[inline(always)]
             fn parts_of_turn(self) -> (Self, Self) {
-                /// The factors for a fourth of the variable, and `times` as much: powers of two, which round nothing.
-                const fn of_fourth<const N: usize>(mut factors: [$kind; N], times: $kind) -> [$kind; N] {
-                    let (mut power, mut by) = (0, times);
-                    while power < N {
-                        factors[power] *= by;
-                        by *= 0.25;
-                        power += 1;
-                    }
-                    factors
-                }
-                let cosine = polynomial(&const { of_fourth(fitted::$cosine, 1.0) }, self);
-                let sine = polynomial(&const { of_fourth(fitted::$short_sine, -0.5) }, self);
-                (cosine, sine)
+                $turn(self)
             }
             #[inline(always)]
             fn cosine(self) -> Self {
@@ -111,8 +98,8 @@ polynomials!(
     SQUARE_OVER_REST_F32,
     ANGLE_OVER_SINE_F32,
     SINE_OVER_ANGLE_F32,
-    SINE_OVER_ANGLE_F32,
-    COSINE_F32
+    COSINE_F32,
+    turn_by_series
 );
 polynomials!(
     f64,
@@ -120,9 +107,38 @@ polynomials!(
     SQUARE_OVER_REST_F64,
     ANGLE_OVER_SINE_F64,
     SINE_OVER_ANGLE_F64,
-    SHORT_SINE_F64,
-    COSINE_F64
+    COSINE_F64,
+    turn_by_tangent
 );
+
+/// [`Polynomials::parts_of_turn`] in `f32`: each by its polynomial, which take less than a division.
+#[inline(always)]
+fn turn_by_series(square: f32) -> (f32, f32) {
+    /// The factors for a fourth of the variable, and `times` as much: powers of two, which round nothing.
+    const fn of_fourth<const N: usize>(mut factors: [f32; N], times: f32) -> [f32; N] {
+        let (mut power, mut by) = (0, times);
+        while power < N {
+            factors[power] *= by;
+            by *= 0.25;
+            power += 1;
+        }
+        factors
+    }
+    let cosine = polynomial(&const { of_fourth(fitted::COSINE_F32, 1.0) }, square);
+    let sine = polynomial(&const { of_fourth(fitted::SINE_OVER_ANGLE_F32, -0.5) }, square);
+    (cosine, sine)
+}
+
+/// [`Polynomials::parts_of_turn`] in `f64`: both from the tangent of a quarter of the angle, `α·a/b` with short `a` and `b`, as
+/// `cos 2y = (1 − tan² y)/(1 + tan² y)` and `sin 2y = 2 tan y/(1 + tan² y)`. No angle gives exactly (1, −½).
+#[inline(always)]
+fn turn_by_tangent(square: f64) -> (f64, f64) {
+    let above = polynomial(&fitted::QUARTER_TANGENT_ABOVE, square);
+    let below = polynomial(&fitted::QUARTER_TANGENT_BELOW, square);
+    let (above_square, below_square, both) = (square * (above * above), below * below, above * below);
+    let share = 1.0 / (below_square + above_square);
+    ((below_square - above_square) * share, -((both + both) * share))
+}
 
 /// A quotient of two polynomials: factors of rising powers, below the line without the last one, which is 1.
 pub(super) struct Quotient<F, const ABOVE: usize, const BELOW: usize> {
