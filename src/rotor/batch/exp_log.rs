@@ -33,10 +33,9 @@ fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&m
     // π² and a hair, as far as the polynomials reach.
     let most = F::narrowed(4.0 * 2.467_402);
     let [yz, zx, xy] = angles;
-    let (mut squares, mut guards, mut factors) = ([F::ZERO; ROWS], [F::ZERO; ROWS], [F::ZERO; ROWS]);
+    let (mut squares, mut factors) = ([F::ZERO; ROWS], [F::ZERO; ROWS]);
     for row in 0..ROWS {
         squares[row] = yz[row] * yz[row] + zx[row] * zx[row] + xy[row] * xy[row];
-        guards[row] = most - squares[row];
     }
     for row in 0..ROWS {
         (out[0][row], factors[row]) = squares[row].parts_of_turn();
@@ -46,11 +45,15 @@ fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&m
             out[part + 1][row] = angles[part][row] * factors[row];
         }
     }
-    mend_rare(&guards, angles, out, &|[yz, zx, xy]: [F; 3]| {
-        let angles = Bivector::new(yz.widened(), zx.widened(), xy.widened());
-        let rotor = Rotor::from_plane_angles(angles);
-        [rotor.s, rotor.yz, rotor.zx, rotor.xy].map(F::narrowed)
-    });
+    // What is no number is rare too.
+    if !squares.iter().fold(true, |all, square| all & (*square <= most)) {
+        let guards = squares.map(|square| most - square);
+        mend_rare(&guards, angles, out, &|[yz, zx, xy]: [F; 3]| {
+            let angles = Bivector::new(yz.widened(), zx.widened(), xy.widened());
+            let rotor = Rotor::from_plane_angles(angles);
+            [rotor.s, rotor.yz, rotor.zx, rotor.xy].map(F::narrowed)
+        });
+    }
 }
 
 /// The plane angles in radians of the short turns of unit rotors, row by row: [`Rotor::plane_angles`] within 1.5e-15 rad

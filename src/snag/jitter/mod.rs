@@ -6,6 +6,7 @@
 //! by the joint's other times, and by the joint on the other side of the body.
 
 mod ends;
+mod score;
 mod white;
 
 use std::cell::OnceCell;
@@ -103,7 +104,7 @@ pub(super) fn find(view: View<'_>, joint: usize) -> Vec<Snag> {
         }
         if !spans.is_empty() {
             let beside = level_beside(&levels, &spans);
-            spans.retain(|span| span.noise >= TIMES_BESIDE * beside);
+            spans.retain(|span| span.is_scored || span.noise >= TIMES_BESIDE * beside);
         }
         if lag == 1 {
             for index in 0..spans.len() {
@@ -146,12 +147,11 @@ fn joined(spans: Vec<Span>, others: Vec<Span>, levels: &Levels<'_>) -> Vec<Span>
         if is_overlapped && trembling * 4 < inside.len() * 3 {
             continue;
         }
-        let clarity = kept
-            .iter()
-            .filter(|other| lies_beside(&span, other))
-            .fold(span.clarity, |clarity, other| clarity.max(other.clarity));
+        let touching = || kept.iter().filter(|other| lies_beside(&span, other));
+        let clarity = touching().fold(span.clarity, |clarity, other| clarity.max(other.clarity));
+        let is_scored = touching().any(|other| other.is_scored);
         kept.retain(|other| !lies_beside(&span, other));
-        kept.push(Span { first, last, clarity, ..span });
+        kept.push(Span { first, last, clarity, is_scored, ..span });
     }
     kept.sort_by_key(|span| span.first);
     kept
@@ -358,6 +358,8 @@ struct Span {
     quiet: f64,
     /// How many times the noise is above the least that would be told.
     clarity: f64,
+    /// Whether it is told for its marks together.
+    is_scored: bool,
 }
 
 fn spans(scan: &Scan<'_>, row: &Row<'_>, levels: &Levels<'_>) -> Vec<Span> {
@@ -493,7 +495,7 @@ fn fitted(
     let growth = middle_of(twice(row, levels.lag, inside)) / noise;
     let most = if last < first + FEW_KEYS { MOST_GROWTH_IN_FEW } else { MOST_GROWTH };
     let is_noise = first < last && noise >= 0.8 * least && growth <= most;
-    is_noise.then_some(Span { first, last, noise, quiet, clarity: noise / least })
+    is_noise.then_some(Span { first, last, noise, quiet, clarity: noise / least, is_scored: false })
 }
 
 /// The first key that shows noise, with another soon after.

@@ -17,7 +17,10 @@ use crate::rotor::Rotor;
 use super::super::mirror::mirror_of;
 use super::super::poses::Poses;
 use super::super::scan::Scan;
-use super::{Levels, MIDDLE, Row, Span, first_of_run, last_of_run, level_of_all, middle, middle_of};
+use super::score::{self, Marks};
+use super::{
+    FINE_SECS, Levels, MIDDLE, Row, Span, first_of_run, last_of_run, level_of_all, middle, middle_of,
+};
 
 /// Windows are so many keys wide; what holds in them: neighbouring fourth differences go along by at most this, growth
 /// to twice the distance is at most that, and so much of it at most is what a joint near by does.
@@ -111,27 +114,55 @@ struct Window {
     level: f64,
     fourths: Vec<Parts>,
     energy: f64,
+    /// How far neighbouring fourth differences go along with each other, −1 to 1.
+    along: f64,
+    /// The level at twice the distance beside that of the fourth differences; `None` where too few keys tell.
+    growth: Option<f64>,
+}
+
+impl Window {
+    /// Whether neighbouring differences go against each other as those of noise do, and do not grow with the distance.
+    fn is_white(&self, most_along: f64, most_growth: f64) -> bool {
+        self.along <= most_along && self.growth.is_none_or(|growth| growth <= most_growth)
+    }
 }
 
 /// Spans of white noise in the keys around `where_loud`.
 pub(super) fn find(scan: &Scan<'_>, row: &Row<'_>, levels: &Levels<'_>, loud: &[Range<usize>]) -> Vec<Span> {
     let mut judge = Judge { scan, row, levels, quiet: None, all: None, mirror: OnceCell::new() };
-    let mut hit = vec![false; row.len()];
+    let is_coarse = row.step_secs > FINE_SECS;
+    let mut hit = vec![Hit::None; row.len()];
     let mut any = false;
     for keys in loud {
         for (width, along, growth, near) in WIDTHS {
             let stride = if keys.len() > ALL_KEYS { width / 4 } else { 1 };
             let Some(end) = keys.end.checked_sub(width) else { continue };
             for start in (keys.start..=end).step_by(stride) {
-                let Some(window) = judge.window(start..start + width, along, growth) else { continue };
-                if judge.is_noise(&window, width, near) {
-                    hit[start..start + width].fill(true);
+                let is_scored = is_coarse && width <= score::WIDEST;
+                let most_along = if is_scored { along.max(score::MOST_ALONG) } else { along };
+                let Some(window) = judge.window(start..start + width, most_along) else { continue };
+                let hits = &mut hit[start..start + width];
+                if is_scored && judge.is_scored_noise(&window) {
+                    hits.fill(Hit::Scored);
+                    any = true;
+                } else if window.is_white(along, growth) && judge.is_noise(&window, width, near) {
+                    hits.iter_mut().for_each(|hit| *hit = (*hit).max(Hit::Told));
                     any = true;
                 }
             }
         }
     }
     if any { judge.spans(&hit) } else { Vec::new() }
+}
+
+/// What was seen at a key.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
+enum Hit {
+    None,
+    /// All marks of noise, each by itself.
+    Told,
+    /// Marks that together are those of noise.
+    Scored,
 }
 
 struct Judge<'a> {
@@ -145,8 +176,8 @@ struct Judge<'a> {
 }
 
 impl Judge<'_> {
-    /// A window whose differences are those of white noise.
-    fn window(&self, keys: Range<usize>, most_along: f64, most_growth: f64) -> Option<Window> {
+    /// A window whose differences are loud, as loud in the sixth as in the fourth, and go against each other.
+    fn window(&self, keys: Range<usize>, most_along: f64) -> Option<Window> {
         let poses = &self.row.poses;
         let inside = (keys.start + 1).max(3)..(keys.end - 1).min(poses.len() - 3);
         // Poses to both sides of a pause tell nothing of noise.
@@ -181,10 +212,23 @@ impl Judge<'_> {
             .map(|&key| self.row.noise(key, 2))
             .filter(|noise| *noise > 0.0)
             .collect();
-        if wide.len() >= 3 && middle_of(wide) > most_growth * fourth_level {
-            return None;
+        let growth = (wide.len() >= 3).then(|| middle_of(wide) / fourth_level);
+        Some(Window { keys: inside, level: fourth_level.min(sixth_level), fourths, energy, along, growth })
+    }
+
+    /// Whether its marks together are those of noise.
+    fn is_scored_noise(&self, window: &Window) -> bool {
+        if window.level < score::LEAST_RAD || !window.is_white(score::MOST_ALONG, score::MOST_GROWTH) {
+            return false;
         }
-        Some(Window { keys: inside, level: fourth_level.min(sixth_level), fourths, energy })
+        let marks = Marks {
+            level: window.level,
+            along: window.along,
+            spread: spread(&window.fourths),
+            mirror: self.mirror(),
+        };
+        score::is_noise(&marks, || score::level_of_others(self.scan, &window.keys))
+            && self.done_near(window) <= score::MOST_NEAR
     }
 
     fn is_noise(&mut self, window: &Window, width: usize, most_near: f64) -> bool {
@@ -261,21 +305,22 @@ impl Judge<'_> {
     }
 
     /// Runs of keys that were hit, fitted to where the noise shows.
-    fn spans(&mut self, hit: &[bool]) -> Vec<Span> {
+    fn spans(&mut self, hit: &[Hit]) -> Vec<Span> {
         let count = hit.len();
         let levels = self.levels;
         let quiet = self.quiet();
         let mut spans: Vec<Span> = Vec::new();
         let mut key = 0;
         while key < count {
-            if !hit[key] {
+            if hit[key] == Hit::None {
                 key += 1;
                 continue;
             }
             let (mut low, mut high) = (key, key);
-            while high + 1 < count && hit[high + 1] {
+            while high + 1 < count && hit[high + 1] != Hit::None {
                 high += 1;
             }
+            let is_scored = hit[low..=high].contains(&Hit::Scored);
             // Wide windows reach beyond the noise, so not the middle.
             let inside = low.max(2)..(high + 1).min(count - 2);
             let level = usual_loud(&inside.map(|key| levels.at(key)).collect::<Vec<_>>());
@@ -291,10 +336,12 @@ impl Judge<'_> {
             key = high + 1;
             let around = low.saturating_sub(ON_KEYS)..(high + 1 + ON_KEYS).min(count);
             if let Some(span) = self.fitted(around, level, quiet) {
+                let span = Span { is_scored, ..span };
                 match spans.last_mut() {
                     Some(last) if span.first <= last.last + ON_KEYS => {
                         last.last = last.last.max(span.last);
                         last.clarity = last.clarity.max(span.clarity);
+                        last.is_scored |= span.is_scored;
                     }
                     _ => spans.push(span),
                 }
@@ -319,7 +366,7 @@ impl Judge<'_> {
         if noise < LEAST_SHARE * least || noise.is_infinite() {
             return None;
         }
-        Some(Span { first, last, noise, quiet: quiet.min(noise), clarity: noise / least })
+        Some(Span { first, last, noise, quiet: quiet.min(noise), clarity: noise / least, is_scored: false })
     }
 }
 
