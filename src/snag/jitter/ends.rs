@@ -190,7 +190,8 @@ mod tests {
         let clip = shaken(Times::Even { step_secs: 1.0 / 30.0, count: 60 }, true_keys, 2.0, seed);
         with_row(&clip, |row| {
             let noise = 2.0_f64.to_radians();
-            let span = Span { first: told.0, last: told.1, noise, quiet: 0.0, clarity: 1.0 };
+            let span =
+                Span { first: told.0, last: told.1, noise, quiet: 0.0, clarity: 1.0, is_scored: false };
             let span = fitted(row, span, &(0..row.len()));
             (span.first, span.last)
         })

@@ -1,4 +1,4 @@
-//! How much a window looks like white noise where poses are few: four marks, added up.
+//! How much a window of a short clip looks like white noise where poses are few: four marks, added up.
 //!
 //! In a loop of a second or two noise is seldom many times what the joint does else, so a window is held against what noise is
 //! by itself and against the other joints: how neighbouring fourth differences go against each other, in how many directions
@@ -87,4 +87,71 @@ pub(super) fn level_of_others(scan: &Scan<'_>, keys: &[usize]) -> Option<f64> {
         })
         .collect();
     (!levels.is_empty()).then(|| middle_of(levels))
+}
+
+#[cfg(test)]
+mod tests {
+    use std::sync::Arc;
+
+    use super::super::tests::shaken;
+    use super::*;
+    use crate::clip::{Clip, Times};
+    use crate::skeleton::{Joint, Skeleton};
+    use crate::snag::outline::Outlines;
+    use crate::snag::scan::View;
+
+    /// Marks in the middle of planted noise and of sound motion that is as loud.
+    const NOISE: Marks = Marks { level: 0.05, along: -0.69, spread: 0.66, mirror: Some(0.03) };
+    const SOUND: Marks = Marks { level: 0.05, along: -0.5, spread: 0.25, mirror: Some(0.05) };
+
+    #[test]
+    fn a_mark_that_is_weak_is_made_up_for_by_others_but_not_all_of_them() {
+        let quiet = || Some(0.002);
+        assert!(is_noise(&NOISE, quiet));
+        assert!(!is_noise(&SOUND, quiet));
+        let [along, spread] = [Marks { along: -0.55, ..NOISE }, Marks { spread: 0.4, ..NOISE }];
+        assert!(is_noise(&along, quiet) && is_noise(&spread, quiet));
+        assert!(!is_noise(&Marks { spread: 0.4, ..along }, quiet));
+        // Where all joints are as loud it is how the body moves; where no other joint or side is there to be asked, it may be noise.
+        assert!(!is_noise(&Marks { mirror: Some(0.05), ..NOISE }, || Some(0.05)));
+        assert!(is_noise(&Marks { mirror: None, ..NOISE }, || None));
+    }
+
+    #[test]
+    fn the_other_joints_are_asked_only_where_they_could_decide() {
+        assert!(!is_noise(&SOUND, || unreachable!("it is far from noise")));
+        let asked = std::cell::Cell::new(false);
+        let _ = is_noise(&NOISE, || {
+            asked.set(true);
+            None
+        });
+        assert!(asked.get());
+    }
+
+    /// Three joints at one place, each with the rotations of a clip of one joint.
+    fn side_by_side(clips: [Clip; 3]) -> Clip {
+        let joint = |number: usize| Joint {
+            name: format!("J{number}"),
+            number,
+            parent: None,
+            ..clips[0].skeleton.joints()[0].clone()
+        };
+        let skeleton = Skeleton::new((0..3).map(joint).collect()).unwrap();
+        let joints = clips.iter().map(|clip| clip.joints[0].clone()).collect();
+        Clip { skeleton: Arc::new(skeleton), joints, ..clips[0].clone() }
+    }
+
+    #[test]
+    fn the_level_of_the_others_is_their_middle_at_those_keys_alone() {
+        let times = Times::Even { step_secs: 1.0 / 24.0, count: 30 };
+        let trembles = |keys, noise_deg, seed| shaken(times.clone(), keys, noise_deg, seed);
+        let clip =
+            side_by_side([trembles((0, 29), 40.0, 1), trembles((0, 14), 2.0, 2), trembles((0, 14), 2.0, 3)]);
+        let outlines = Outlines::new(3);
+        let scan = Scan::new(View { clip: &clip, outlines: &outlines }, 0).unwrap();
+        let level_deg = |keys: &[usize]| level_of_others(&scan, keys).unwrap().to_degrees();
+        let [loud, calm] = [&[4, 5, 6, 7, 8, 9][..], &[19, 20, 21, 22, 23, 24]].map(level_deg);
+        assert!((1.0..4.0).contains(&loud), "{loud}");
+        assert!(calm < 0.2, "{calm}");
+    }
 }

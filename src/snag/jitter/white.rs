@@ -54,7 +54,7 @@ const LEAST_NEAR_RAD: f64 = 0.3 / 180.0 * PI;
 /// Differences that tell a window's level at least.
 const LEAST_TOLD: usize = 4;
 
-/// Up to so many keys every window is looked at.
+/// Up to so many keys every window is looked at, and scored where poses are few.
 const ALL_KEYS: usize = 400;
 
 /// The length of the coefficients of the sixth difference: √924.
@@ -130,7 +130,8 @@ impl Window {
 /// Spans of white noise in the keys around `where_loud`.
 pub(super) fn find(scan: &Scan<'_>, row: &Row<'_>, levels: &Levels<'_>, loud: &[Range<usize>]) -> Vec<Span> {
     let mut judge = Judge { scan, row, levels, quiet: None, all: None, mirror: OnceCell::new() };
-    let is_coarse = row.step_secs > FINE_SECS;
+    // A longer clip tells by itself what is usual.
+    let is_short = row.step_secs > FINE_SECS && row.len() <= ALL_KEYS;
     let mut hit = vec![Hit::None; row.len()];
     let mut any = false;
     for keys in loud {
@@ -138,7 +139,7 @@ pub(super) fn find(scan: &Scan<'_>, row: &Row<'_>, levels: &Levels<'_>, loud: &[
             let stride = if keys.len() > ALL_KEYS { width / 4 } else { 1 };
             let Some(end) = keys.end.checked_sub(width) else { continue };
             for start in (keys.start..=end).step_by(stride) {
-                let is_scored = is_coarse && width <= score::WIDEST;
+                let is_scored = is_short && width <= score::WIDEST;
                 let most_along = if is_scored { along.max(score::MOST_ALONG) } else { along };
                 let Some(window) = judge.window(start..start + width, most_along) else { continue };
                 let hits = &mut hit[start..start + width];
