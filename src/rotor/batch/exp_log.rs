@@ -1,7 +1,7 @@
 //! From plane angles to rotors and back.
 
 use super::super::{Bivector, Rotor};
-use super::blocks::{Column, each_block, each_row, mend_rare};
+use super::blocks::{Column, each_block, each_row, is_rare, mend_rare};
 use super::level::Level;
 use super::real::{Polynomials, Real};
 use super::streams::{Parts, PartsMut};
@@ -45,8 +45,7 @@ fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&m
             out[part + 1][row] = angles[part][row] * factors[row];
         }
     }
-    // What is no number is rare too.
-    if !squares.iter().fold(true, |all, square| all & (*square <= most)) {
+    if squares.iter().fold(false, |any, square| any | is_rare(most - *square)) {
         let guards = squares.map(|square| most - square);
         mend_rare(&guards, angles, out, &|[yz, zx, xy]: [F; 3]| {
             let angles = Bivector::new(yz.widened(), zx.widened(), xy.widened());

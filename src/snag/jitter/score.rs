@@ -129,7 +129,7 @@ mod tests {
     }
 
     /// Three joints at one place, each with the rotations of a clip of one joint.
-    fn side_by_side(clips: [Clip; 3]) -> Clip {
+    fn side_by_side(clips: &[Clip; 3]) -> Clip {
         let joint = |number: usize| Joint {
             name: format!("J{number}"),
             number,
@@ -146,7 +146,7 @@ mod tests {
         let times = Times::Even { step_secs: 1.0 / 24.0, count: 30 };
         let trembles = |keys, noise_deg, seed| shaken(times.clone(), keys, noise_deg, seed);
         let clip =
-            side_by_side([trembles((0, 29), 40.0, 1), trembles((0, 14), 2.0, 2), trembles((0, 14), 2.0, 3)]);
+            side_by_side(&[trembles((0, 29), 40.0, 1), trembles((0, 14), 2.0, 2), trembles((0, 14), 2.0, 3)]);
         let outlines = Outlines::new(3);
         let scan = Scan::new(View { clip: &clip, outlines: &outlines }, 0).unwrap();
         let level_deg = |keys: &[usize]| level_of_others(&scan, keys).unwrap().to_degrees();

@@ -147,7 +147,9 @@ pub(super) fn find(scan: &Scan<'_>, row: &Row<'_>, levels: &Levels<'_>, loud: &[
                     hits.fill(Hit::Scored);
                     any = true;
                 } else if window.is_white(along, growth) && judge.is_noise(&window, width, near) {
-                    hits.iter_mut().for_each(|hit| *hit = (*hit).max(Hit::Told));
+                    for hit in hits {
+                        *hit = (*hit).max(Hit::Told);
+                    }
                     any = true;
                 }
             }
