@@ -465,10 +465,9 @@ const LEAST_PRECISION: f64 = 0.97;
 
 fn least_recall(kind: SnagKind, coarse: bool) -> f64 {
     match kind {
-        SnagKind::Spike if coarse => 0.9,
+        SnagKind::Spike | SnagKind::Jitter if coarse => 0.9,
         SnagKind::Stuck if coarse => 0.88,
         SnagKind::HalfTurn | SnagKind::Spike => 0.95,
-        SnagKind::Jitter if coarse => 0.9,
         SnagKind::Stuck => 0.9,
         SnagKind::Jitter => 0.97,
         _ => 0.98,
