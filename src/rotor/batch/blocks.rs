@@ -112,7 +112,7 @@ pub(super) fn each_block<F: Real, const I: usize, const O: usize, const ROWS: us
 /// Below 0 or no number.
 #[expect(clippy::neg_cmp_op_on_partial_ord, reason = "no number is rare too")]
 #[inline(always)]
-pub(super) fn is_rare<F: Real>(guard: F) -> bool {
+fn is_rare<F: Real>(guard: F) -> bool {
     !(guard >= F::ZERO)
 }
 

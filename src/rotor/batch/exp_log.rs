@@ -1,7 +1,7 @@
 //! From plane angles to rotors and back.
 
 use super::super::{Bivector, Rotor};
-use super::blocks::{Column, each_block, each_row, is_rare, mend_rare};
+use super::blocks::{Column, each_block, each_row, mend_rare};
 use super::level::Level;
 use super::real::{Polynomials, Real};
 use super::streams::{Parts, PartsMut};
@@ -33,9 +33,10 @@ fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&m
     // π² and a hair, as far as the polynomials reach.
     let most = F::narrowed(4.0 * 2.467_402);
     let [yz, zx, xy] = angles;
-    let (mut squares, mut factors) = ([F::ZERO; ROWS], [F::ZERO; ROWS]);
+    let (mut squares, mut guards, mut factors) = ([F::ZERO; ROWS], [F::ZERO; ROWS], [F::ZERO; ROWS]);
     for row in 0..ROWS {
         squares[row] = yz[row] * yz[row] + zx[row] * zx[row] + xy[row] * xy[row];
+        guards[row] = most - squares[row];
     }
     for row in 0..ROWS {
         (out[0][row], factors[row]) = squares[row].parts_of_turn();
@@ -45,14 +46,11 @@ fn exp_block<F: Real, const ROWS: usize>(angles: [&Column<F, ROWS>; 3], out: [&m
             out[part + 1][row] = angles[part][row] * factors[row];
         }
     }
-    if squares.iter().fold(false, |any, square| any | is_rare(most - *square)) {
-        let guards = squares.map(|square| most - square);
-        mend_rare(&guards, angles, out, &|[yz, zx, xy]: [F; 3]| {
-            let angles = Bivector::new(yz.widened(), zx.widened(), xy.widened());
-            let rotor = Rotor::from_plane_angles(angles);
-            [rotor.s, rotor.yz, rotor.zx, rotor.xy].map(F::narrowed)
-        });
-    }
+    mend_rare(&guards, angles, out, &|[yz, zx, xy]: [F; 3]| {
+        let angles = Bivector::new(yz.widened(), zx.widened(), xy.widened());
+        let rotor = Rotor::from_plane_angles(angles);
+        [rotor.s, rotor.yz, rotor.zx, rotor.xy].map(F::narrowed)
+    });
 }
 
 /// The plane angles in radians of the short turns of unit rotors, row by row: [`Rotor::plane_angles`] within 1.5e-15 rad

@@ -329,6 +329,12 @@ fn fourth_difference([a, b, c, d, e]: [Rotor; 5]) -> f64 {
     2.0 * parts.iter().map(|part| part * part).sum::<f64>().sqrt() / (FOURTH * MIDDLE)
 }
 
+/// What the fourth difference at a key of any joint stands for, as [`Row::noise`] tells it of an even row.
+fn noise_of(scan: &Scan<'_>, key: usize, lag: usize) -> f64 {
+    let near = scan.keys[key];
+    fourth_difference(std::array::from_fn(|i| scan.keys[key + i * lag - 2 * lag].aligned_to(near)))
+}
+
 /// The same at twice the distance, for the keys of a window that have such.
 fn twice(row: &Row<'_>, lag: usize, keys: Range<usize>) -> Vec<f64> {
     let inside = keys.start.max(4 * lag)..keys.end.min(row.len() - 4 * lag);
@@ -443,13 +449,9 @@ fn level_of_all(scan: &Scan<'_>, lag: usize) -> f64 {
                 return None;
             }
             let stride = (count / SAMPLED).max(1);
-            let own = |key: usize| other.keys[key];
             let each: Vec<f64> = (2 * lag..count - 2 * lag)
                 .step_by(stride)
-                .map(|key| {
-                    let near = own(key);
-                    fourth_difference(std::array::from_fn(|i| own(key + i * lag - 2 * lag).aligned_to(near)))
-                })
+                .map(|key| noise_of(&other, key, lag))
                 .filter(|level| level.is_finite() && *level > 0.0)
                 .collect();
             (each.len() * 2 * stride > count).then(|| middle(&each))

@@ -11,7 +11,7 @@
 use std::f64::consts::PI;
 use std::ops::RangeInclusive;
 
-use super::{fourth_difference, middle_of};
+use super::{middle_of, noise_of};
 use crate::snag::scan::Scan;
 
 /// Windows that are scored are so many keys wide at most.
@@ -78,13 +78,7 @@ pub(super) fn level_of_others(scan: &Scan<'_>, keys: &[usize]) -> Option<f64> {
     let levels: Vec<f64> = others
         .filter_map(|other| scan.other(other))
         .filter(|other| other.track.times == scan.track.times)
-        .map(|other| {
-            let level = |key: &usize| {
-                let near = other.keys[*key];
-                fourth_difference(std::array::from_fn(|i| other.keys[key + i - 2].aligned_to(near)))
-            };
-            middle_of(keys.iter().map(level).collect())
-        })
+        .map(|other| middle_of(keys.iter().map(|key| noise_of(&other, *key, 1)).collect()))
         .collect();
     (!levels.is_empty()).then(|| middle_of(levels))
 }
