@@ -9,6 +9,7 @@ mod cumulative;
 mod euler;
 mod filter;
 mod interpolate;
+mod linear;
 mod matrix;
 mod mean;
 mod motion;

@@ -4,7 +4,7 @@ use std::ops::Mul;
 
 use glam::DVec3;
 
-use super::slope::{inverse_jacobian, jacobian, turning_term};
+use super::slope::Slope;
 use super::{Bivector, Rotor};
 
 /// An orientation with its first and second change, by any one parameter: seconds, or a share of a segment.
@@ -38,11 +38,11 @@ impl Motion {
     #[must_use]
     pub fn turning(angles: Bivector, first: Bivector, second: Bivector) -> Self {
         let (f, g, h) = (angles.axis(), first.axis(), second.axis());
-        let slope = jacobian(f);
+        let slope = Slope::of(f);
         Self {
             orientation: Rotor::from_plane_angles(angles),
-            rate: Bivector::from_axis(slope * g),
-            acceleration: Bivector::from_axis(slope * h + turning_term(f, g)),
+            rate: Bivector::from_axis(slope.rate(g)),
+            acceleration: Bivector::from_axis(slope.acceleration(g, h)),
         }
     }
 
@@ -51,10 +51,9 @@ impl Motion {
     #[must_use]
     pub fn plane_angles_as_signed(self) -> [Bivector; 3] {
         let angles = self.orientation.plane_angles_as_signed();
-        let f = angles.axis();
-        let inverse = inverse_jacobian(f);
-        let first = inverse * self.rate.axis();
-        let second = inverse * (self.acceleration.axis() - turning_term(f, first));
+        let slope = Slope::of(angles.axis());
+        let first = slope.change(self.rate.axis());
+        let second = slope.second_change(first, self.acceleration.axis());
         [angles, Bivector::from_axis(first), Bivector::from_axis(second)]
     }
 

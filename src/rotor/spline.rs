@@ -4,8 +4,9 @@ use std::f64::consts::PI;
 
 use glam::DVec3;
 
-use super::batch::{Level, Streams, angle_over_sine, compose, exp};
-use super::slope::{Slope, jacobian, turning_term};
+use super::batch::{Level, Streams, compose, exp, turns_with_rests};
+use super::linear::Vector;
+use super::slope::{Rests, Slope};
 use super::spline_rates::{Segment, rates_at_keys};
 use super::{Bivector, Motion, Rotor};
 
@@ -138,6 +139,9 @@ pub enum SplineError {
     },
 }
 
+/// Rows that are computed together.
+const TILE: usize = 64;
+
 impl RotationSpline {
     /// The spline through unit rotors `keys` at `times`, in seconds and rising. The signs of the keys don't matter: each
     /// segment goes the short way, and each key takes the sign that is near the one before.
@@ -153,11 +157,13 @@ impl RotationSpline {
         }
         let segments = segments(times, &keys)?;
         let rates = rates_at_keys(&segments, ends)?;
-        let segments = segments.iter().zip(rates.windows(2));
+        // In the place of the other.
         let segments = segments
-            .map(|(segment, rates)| {
-                let Segment { secs, slope, inverse } = segment;
-                Cubic::new(*secs, slope.angles(), rates[0], *inverse * rates[1])
+            .into_iter()
+            .zip(rates.windows(2))
+            .map(|(Segment { secs, slope }, rates)| {
+                let [start, end] = [rates[0], rates[1]].map(DVec3::from);
+                Cubic::new(secs, slope.angles.into(), start, slope.change(end))
             })
             .collect();
         Ok(Self { times: times.to_vec(), keys, segments })
@@ -178,7 +184,6 @@ impl RotationSpline {
     /// [`RotationSpline::at`] for each of `times`, several times as fast for many, chiefly where they rise: within 2e-15 rad of it.
     #[must_use]
     pub fn at_all(&self, times: &[f64]) -> Vec<Rotor> {
-        const TILE: usize = 128;
         let mut found = Vec::with_capacity(times.len());
         let mut angles = Streams::zeros(TILE);
         let (mut starts, mut turns, mut results) =
@@ -225,7 +230,7 @@ impl RotationSpline {
     pub fn rate(&self, t: f64) -> Bivector {
         let (segment, s) = self.segment_at(t);
         let cubic = &self.segments[segment];
-        Bivector::from_axis(jacobian(cubic.angles(s)) * cubic.first(s))
+        Bivector::from_axis(Slope::of(cubic.angles(s)).rate(cubic.first(s)))
     }
 
     /// The change of the body rate at time `t` in radians per second squared; outside the keys, that at the nearest key.
@@ -233,8 +238,7 @@ impl RotationSpline {
     pub fn acceleration(&self, t: f64) -> Bivector {
         let (segment, s) = self.segment_at(t);
         let cubic = &self.segments[segment];
-        let angles = cubic.angles(s);
-        Bivector::from_axis(jacobian(angles) * cubic.second(s) + turning_term(angles, cubic.first(s)))
+        Bivector::from_axis(Slope::of(cubic.angles(s)).acceleration(cubic.first(s), cubic.second(s)))
     }
 
     /// Rotation, rate and acceleration at time `t` in seconds, as [`RotationSpline::at`], [`RotationSpline::rate`] and
@@ -284,17 +288,37 @@ pub(super) fn check_keys(times: &[f64], keys: &[Rotor]) -> Result<(), SplineErro
 
 /// The stretches between keys that are near each other in sign.
 fn segments(times: &[f64], keys: &[Rotor]) -> Result<Vec<Segment>, SplineError> {
+    /// The square of the longest turn.
+    const MOST: f64 = (PI - HALF_TURN_MARGIN) * (PI - HALF_TURN_MARGIN);
     let mut segments = Vec::with_capacity(keys.len() - 1);
-    for (key, (times, keys)) in times.windows(2).zip(keys.windows(2)).enumerate() {
-        let turn = keys[0].reverse() * keys[1];
-        let (planes, cosine) = (turn.bivector().axis(), turn.s);
-        let angles = planes * (-2.0 * angle_over_sine(cosine));
-        let turn_rad = angles.length();
-        if turn_rad > PI - HALF_TURN_MARGIN {
-            return Err(SplineError::HalfTurn { key, turn_rad });
+    let (mut starts, mut ends, mut found) =
+        (Streams::zeros(TILE), Streams::zeros(TILE), Streams::zeros(TILE));
+    let level = Level::best();
+    for first in (0..keys.len() - 1).step_by(TILE) {
+        let keys = &keys[first..keys.len().min(first + TILE + 1)];
+        for (row, pair) in keys.windows(2).enumerate() {
+            starts.set(row, [pair[0].s, pair[0].yz, pair[0].zx, pair[0].xy]);
+            ends.set(row, [pair[1].s, pair[1].yz, pair[1].zx, pair[1].xy]);
         }
-        let sine = planes.length();
-        segments.push(Segment::new(times[1] - times[0], Slope::of_half_turn(angles, turn_rad, sine, cosine)));
+        let rows = 0..keys.len() - 1;
+        turns_with_rests(
+            level,
+            starts.parts().map(|stream| &stream[rows.clone()]),
+            ends.parts().map(|stream| &stream[rows.clone()]),
+            found.parts_mut().map(|stream| &mut stream[rows.clone()]),
+        );
+        let parts = found.parts();
+        for row in rows {
+            let [x, y, z, cosine, sine, cotangent, across, twice_across] = parts.map(|stream| stream[row]);
+            let angles = Vector([x, y, z]);
+            let square = angles.dot(angles);
+            if square > MOST {
+                return Err(SplineError::HalfTurn { key: first + row, turn_rad: square.sqrt() });
+            }
+            let secs = times[first + row + 1] - times[first + row];
+            let rests = Rests { cosine, sine, cotangent, across, twice_across };
+            segments.push(Segment { secs, slope: Slope { angles, rests } });
+        }
     }
     Ok(segments)
 }

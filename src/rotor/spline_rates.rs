@@ -5,11 +5,21 @@
 //! `q(w) = q(w₀) + q'(w₀) d + q(d)`: the first two go into the system of equations, which is eliminated once; the last is small, and
 //! only the right sides are worked out again, round after round, until nothing moves.
 //!
+//! The equations are eliminated from both ends towards the middle, two side by side: each step waits for the one before it, so
+//! that two take little longer than one, and both go into one instruction.
+//!
 //! Source: Park & Ravani 1997, "Smooth invariant interpolation of rotations", ACM TOG 16(3), section 4; the split is ours.
 
-use glam::{DMat3, DVec3};
+#![expect(
+    clippy::inline_always,
+    reason = "a part that stays a function of its own is built for the baseline, and keeps what is around it from wide instructions"
+)]
 
-use super::slope::Slope;
+use wide::f64x2;
+
+use super::batch::Level;
+use super::linear::{Matrix, Vector};
+use super::slope::{Rests, Slope};
 use super::spline::{EndRate, EndRates, SplineError};
 
 /// One stretch between two keys.
@@ -17,107 +27,171 @@ use super::spline::{EndRate, EndRates, SplineError};
 pub(super) struct Segment {
     pub(super) secs: f64,
     pub(super) slope: Slope,
-    /// From the body rate at its end to the slope of its angles there.
-    pub(super) inverse: DMat3,
 }
 
 impl Segment {
-    pub(super) fn new(secs: f64, slope: Slope) -> Self {
-        Self { secs, slope, inverse: slope.inverse_jacobian() }
-    }
-
     /// The mean rate.
-    fn secant(&self) -> DVec3 {
-        self.slope.angles() / self.secs
+    fn secant(&self) -> Vector<f64> {
+        self.slope.angles * (1.0 / self.secs)
     }
 }
 
 /// Body rates at the keys, so that the acceleration does not jump at any inner one.
-pub(super) fn rates_at_keys(segments: &[Segment], ends: EndRates) -> Result<Vec<DVec3>, SplineError> {
+pub(super) fn rates_at_keys(segments: &[Segment], ends: EndRates) -> Result<Vec<Vector<f64>>, SplineError> {
     let n = segments.len();
     let sides = ends.sides();
-    // The secants are also a good first guess for the keys within.
-    let mut rates: Vec<DVec3> = std::iter::once(segments[0].secant())
-        .chain(segments.windows(2).map(|pair| 0.5 * (pair[0].secant() + pair[1].secant())))
-        .chain(std::iter::once(segments[n - 1].secant()))
-        .collect();
-    if let Some(sides) = sides {
-        for (key, side) in [(0, sides[0]), (n, sides[1])] {
-            if let EndRate::Given(rate) = side {
-                rates[key] = rate.axis();
+    if let (1, Some(sides)) = (n, sides)
+        && !sides.contains(&EndRate::Natural)
+    {
+        let mut rates = first_guess(segments, Some(sides));
+        rates.truncate(n + 1);
+        return Ok(rates);
+    }
+    let system = System::new(segments, sides);
+    let mut found = match system.near(first_guess(segments, sides)) {
+        Some(found) => found,
+        None => system.patiently(first_guess(segments, sides))?,
+    };
+    found.truncate(n + 1);
+    Ok(found)
+}
+
+/// The mean rates of the segments around each key, and one more, as the conditions go in pairs.
+fn first_guess(segments: &[Segment], sides: Option<[EndRate; 2]>) -> Vec<Vector<f64>> {
+    let n = segments.len();
+    let mut rates = Vec::with_capacity(n + 2);
+    let mut before = segments[0].secant();
+    rates.push(before);
+    for segment in &segments[1..] {
+        let after = segment.secant();
+        rates.push((before + after) * 0.5);
+        before = after;
+    }
+    rates.extend([before, Vector::zero()]);
+    for (key, side) in [0, n].into_iter().zip(sides.into_iter().flatten()) {
+        if let EndRate::Given(rate) = side {
+            rates[key] = rate.axis().into();
+        }
+    }
+    rates
+}
+
+/// One condition: `lower · J(segment before) · rate before + diagonal · own rate + bend · turning term of the segment before + upper ·
+/// J⁻¹(segment after) · rate after = right`.
+#[derive(Clone, Copy)]
+struct Condition {
+    lower: f64,
+    diagonal: f64,
+    upper: f64,
+    right: Vector<f64>,
+    bend: f64,
+}
+
+impl Condition {
+    /// Tells a rate.
+    fn known(rate: Vector<f64>) -> Self {
+        Self { lower: 0.0, diagonal: 1.0, upper: 0.0, right: rate, bend: 0.0 }
+    }
+
+    /// The acceleration does not jump where segment `left` gives way to segment `right`.
+    fn inner(left: &Segment, right: &Segment) -> Self {
+        let (over_left, over_right) = (1.0 / left.secs, 1.0 / right.secs);
+        let [of_left, of_right] = [(left, over_left), (right, over_right)]
+            .map(|(segment, over)| segment.slope.angles * (over * over));
+        Self {
+            lower: 2.0 * over_left,
+            diagonal: 4.0 * (over_left + over_right),
+            upper: 2.0 * over_right,
+            right: (of_left + of_right) * 6.0,
+            bend: 1.0,
+        }
+    }
+
+    /// At one of two ends.
+    fn end(side: EndRate, segment: &Segment, is_first: bool) -> Self {
+        match side {
+            EndRate::Given(rate) => Self::known(rate.axis().into()),
+            EndRate::Secant => Self::known(segment.secant()),
+            EndRate::Natural if is_first => {
+                Self { diagonal: 2.0, upper: 1.0, ..Self::known(segment.secant() * 3.0) }
+            }
+            EndRate::Natural => {
+                Self { lower: 2.0, diagonal: 4.0, bend: segment.secs, ..Self::known(segment.secant() * 6.0) }
             }
         }
-        if n == 1 && !sides.contains(&EndRate::Natural) {
-            return Ok(rates);
-        }
-    }
-    let system = System { segments, sides };
-    match system.near(&rates) {
-        Some(found) => Ok(found),
-        None => system.patiently(rates),
     }
 }
 
+/// The conditions of all keys, or, of a closed loop, of all but the seam.
 struct System<'a> {
     segments: &'a [Segment],
-    /// The two ends; `None` for a closed loop.
-    sides: Option<[EndRate; 2]>,
+    /// The key of the first condition.
+    first: usize,
+    /// An even number.
+    conditions: Vec<Condition>,
+    /// Of a closed loop, that at the seam.
+    seam: Option<Condition>,
 }
 
-/// One condition: `lower · rate before + diagonal · own rate + bend · turning term of the segment before + upper · rate after = right`.
+/// Two conditions, as far from the first as from the last, with all that does not depend on the right sides worked out: `rate = own · (right −
+/// inward · constant of the key further out) − outward · rate of the key further in`.
 #[derive(Clone, Copy)]
-struct Row {
-    lower: DMat3,
-    diagonal: f64,
-    upper: DMat3,
-    right: DVec3,
-    bend: f64,
-    before: usize,
+struct Rung {
+    inward: Matrix<f64x2>,
+    own: Matrix<f64x2>,
+    outward: Matrix<f64x2>,
+    right: Vector<f64x2>,
+    /// The rates that the bends are split at.
+    anchor: Vector<f64x2>,
 }
 
-/// A condition with all that does not depend on the right side worked out: `rate = own · right − before · constant of the key before −
-/// after · rate after`.
-#[derive(Clone, Copy)]
-struct Eliminated {
-    own: DMat3,
-    before: DMat3,
-    after: DMat3,
-    right: DVec3,
-    bend: f64,
-    segment: usize,
-    /// The rate that the bend is split at.
-    anchor: DVec3,
+/// The conditions, eliminated from both ends to the middle.
+struct Elimination<'a> {
+    system: &'a System<'a>,
+    rungs: Vec<Rung>,
+    /// Where they meet: the rate of the last key of the first half is this, times its constant less what the other half adds.
+    join: Matrix<f64>,
+    seam: Option<Seam>,
 }
 
 /// A closed loop: every other rate is told by that at the seam, `rate = constant − factor · rate at the seam`, and the condition at
 /// the seam tells that one.
 struct Seam {
     /// For each key.
-    factors: Vec<DMat3>,
-    row: Row,
-    own: DMat3,
-    anchor: DVec3,
+    factors: Vec<Matrix<f64>>,
+    lower: Matrix<f64>,
+    upper: Matrix<f64>,
+    right: Vector<f64>,
+    bend: Slope,
+    own: Matrix<f64>,
+    anchor: Vector<f64>,
 }
 
-/// The conditions of all keys, eliminated from the first to the last.
-struct Elimination<'a> {
-    segments: &'a [Segment],
-    rows: Vec<Eliminated>,
-    seam: Option<Seam>,
-}
+impl<'a> System<'a> {
+    fn new(segments: &'a [Segment], sides: Option<[EndRate; 2]>) -> Self {
+        let n = segments.len();
+        let mut conditions = Vec::with_capacity(n + 2);
+        conditions.extend(sides.map(|[first, _]| Condition::end(first, &segments[0], true)));
+        conditions.extend(segments.windows(2).map(|pair| Condition::inner(&pair[0], &pair[1])));
+        conditions.extend(sides.map(|[_, last]| Condition::end(last, &segments[n - 1], false)));
+        if conditions.len() % 2 == 1 {
+            conditions.push(Condition::known(Vector::zero()));
+        }
+        let seam = sides.is_none().then(|| Condition::inner(&segments[n - 1], &segments[0]));
+        Self { segments, first: usize::from(sides.is_none()), conditions, seam }
+    }
 
-impl System<'_> {
     /// From a guess by quick steps; `None` where these do not lead on.
-    fn near(&self, guess: &[DVec3]) -> Option<Vec<DVec3>> {
+    fn near(&self, guess: Vec<Vector<f64>>) -> Option<Vec<Vector<f64>>> {
         /// 3 to 5 are usual.
         const MOST_ROUNDS: usize = 12;
         /// Of the largest rate: below its rounding.
         const SETTLED: f64 = 1e-16;
-        let mut rates = Vec::with_capacity(guess.len());
+        let mut rates = vec![Vector::zero(); guess.len()];
         let plain = self.eliminated(None, Vec::new());
-        plain.solve(guess, &mut rates);
-        let elimination = self.eliminated(Some(&rates), plain.rows);
-        let mut next = Vec::with_capacity(rates.len());
+        plain.solve(&guess, &mut rates);
+        let elimination = self.eliminated(Some(&rates), plain.rungs);
+        let mut next = guess;
         let mut change = f64::INFINITY;
         for _ in 0..MOST_ROUNDS {
             elimination.solve(&rates, &mut next);
@@ -138,12 +212,12 @@ impl System<'_> {
     }
 
     /// By as many rounds as it takes: with turns near 180° the quick steps go astray.
-    fn patiently(&self, mut rates: Vec<DVec3>) -> Result<Vec<DVec3>, SplineError> {
+    fn patiently(&self, mut rates: Vec<Vector<f64>>) -> Result<Vec<Vector<f64>>, SplineError> {
         const MOST_ROUNDS: usize = 1000;
         /// Of 200 000 random curves with steps up to 178° all settle with this; with full steps alone up to 3 in 2000 did not.
         const SMALLEST_SHARE: f64 = 0.2;
         let elimination = self.eliminated(None, Vec::new());
-        let mut next = Vec::with_capacity(rates.len());
+        let mut next = rates.clone();
         let (mut change, mut share) = (f64::INFINITY, 1.0_f64);
         for round in 1..=MOST_ROUNDS {
             elimination.solve(&rates, &mut next);
@@ -159,167 +233,224 @@ impl System<'_> {
                 share = (share * 0.8).max(SMALLEST_SHARE);
             }
             for (rate, next) in rates.iter_mut().zip(&next) {
-                *rate += (*next - *rate) * share;
+                *rate = *rate + (*next - *rate) * share;
             }
             change = moved;
         }
         Err(SplineError::NotSettled { change, rounds: MOST_ROUNDS })
     }
 
-    /// The acceleration does not jump where segment `before` gives way to segment `after`.
-    fn inner(&self, before: usize, after: usize) -> Row {
-        let [left, right] = [before, after].map(|segment| &self.segments[segment]);
-        let (over_left, over_right) = (1.0 / left.secs, 1.0 / right.secs);
-        Row {
-            lower: left.slope.jacobian() * (2.0 * over_left),
-            diagonal: 4.0 * (over_left + over_right),
-            upper: right.inverse * (2.0 * over_right),
-            right: 6.0
-                * (left.slope.angles() * (over_left * over_left)
-                    + right.slope.angles() * (over_right * over_right)),
-            bend: 1.0,
-            before,
-        }
+    /// The segments before and after the key of a condition; at the ends, and for the condition that makes them even, any one.
+    #[inline(always)]
+    fn around(&self, condition: usize) -> [&Slope; 2] {
+        let (key, last) = (self.first + condition, self.segments.len() - 1);
+        [&self.segments[key.saturating_sub(1).min(last)].slope, &self.segments[key.min(last)].slope]
     }
 
-    /// The condition at one of two ends.
-    fn end(&self, side: EndRate, is_first: bool) -> Row {
-        let before = self.segments.len() - 1;
-        let known = |rate| Row {
-            lower: DMat3::ZERO,
-            diagonal: 1.0,
-            upper: DMat3::ZERO,
-            right: rate,
-            bend: 0.0,
-            before,
-        };
-        let segment = &self.segments[if is_first { 0 } else { before }];
-        match side {
-            EndRate::Given(rate) => known(rate.axis()),
-            EndRate::Secant => known(segment.secant()),
-            EndRate::Natural if is_first => {
-                Row { diagonal: 2.0, upper: segment.inverse, ..known(3.0 * segment.secant()) }
+    /// The conditions eliminated, the bends split at the rates `anchors`, or at standstill. `rungs` lends its room.
+    fn eliminated(&self, anchors: Option<&[Vector<f64>]>, mut rungs: Vec<Rung>) -> Elimination<'_> {
+        rungs.clear();
+        rungs.reserve_exact(self.conditions.len() / 2);
+        Level::best().run(
+            #[inline(always)]
+            || self.fill(anchors, &mut rungs),
+        );
+        let one = Matrix::diagonal(1.0);
+        let join = rungs.last().map_or(one, |rung| {
+            let [front, back] = apart(rung.outward);
+            inverse(one - front * back)
+        });
+        let mut elimination = Elimination { system: self, rungs, join, seam: None };
+        elimination.seam = self.seam.as_ref().map(|condition| elimination.seam(condition, anchors));
+        elimination
+    }
+
+    /// Eliminates the conditions two by two.
+    #[inline(always)]
+    fn fill(&self, anchors: Option<&[Vector<f64>]>, rungs: &mut Vec<Rung>) {
+        let last = self.conditions.len().wrapping_sub(1);
+        let mut outward = Matrix::diagonal(f64x2::ZERO);
+        for i in 0..self.conditions.len() / 2 {
+            let [front, back] = [&self.conditions[i], &self.conditions[last - i]];
+            let ([before_front, after_front], [before_back, after_back]) =
+                (self.around(i), self.around(last - i));
+            // What couples the outermost two to the seam stands in the factors.
+            let [lower, upper] =
+                if self.seam.is_some() && i == 0 { [0.0; 2] } else { [front.lower, back.upper] };
+            let inward = Matrix::of_cross_products(
+                beside(before_front.angles, after_back.angles),
+                f64x2::new([-before_front.rests.cosine, 0.5]),
+                f64x2::new([before_front.rests.sine, after_back.rests.cotangent]),
+            ) * f64x2::new([lower, upper]);
+            let further = Matrix::of_cross_products(
+                beside(after_front.angles, before_back.angles),
+                f64x2::new([0.5, -before_back.rests.cosine]),
+                f64x2::new([after_front.rests.cotangent, before_back.rests.sine]),
+            ) * f64x2::new([front.upper, back.lower]);
+            let mut own = Matrix::diagonal(f64x2::new([front.diagonal, back.diagonal]));
+            let mut right = beside(front.right, back.right);
+            let mut anchor = Vector::zero();
+            if let Some(anchors) = anchors {
+                let (slope, bend) = self.bend(i, last - i);
+                let inverse = slope.inverse_jacobian();
+                anchor = beside(anchors[self.first + i], anchors[self.first + last - i]);
+                let g = inverse * anchor;
+                // `q'(w₀) w₀` is twice `q(w₀)`.
+                right = right + slope.turning_term(g) * bend;
+                own = own + slope.turning_slope(g) * inverse * bend;
             }
-            EndRate::Natural => Row {
-                lower: segment.slope.jacobian() * 2.0,
-                diagonal: 4.0,
-                bend: segment.secs,
-                ..known(6.0 * segment.secant())
-            },
+            let (adjugate, determinant) = (own - inward * outward).adjugate();
+            let over = f64x2::ONE / determinant;
+            outward = (adjugate * further) * over;
+            rungs.push(Rung { inward, own: adjugate * over, outward, right, anchor });
         }
     }
 
-    /// The conditions eliminated, the bends split at the rates `anchors`, or at standstill. `rows` lends its room.
-    fn eliminated(&self, anchors: Option<&[DVec3]>, mut rows: Vec<Eliminated>) -> Elimination<'_> {
-        let n = self.segments.len();
-        let anchor = |key: usize| anchors.map_or(DVec3::ZERO, |rates| rates[key]);
-        rows.clear();
-        rows.reserve_exact(n + 1);
-        let mut last = DMat3::ZERO;
-        let mut eliminate = |row: Row, key: usize| {
-            let anchor = anchor(key);
-            let (own, right) = self.split(&row, anchor);
-            let own = inverse(own - row.lower * last);
-            let after = own * row.upper;
-            last = after;
-            let before = own * row.lower;
-            rows.push(Eliminated { own, before, after, right, bend: row.bend, segment: row.before, anchor });
-        };
-        if let Some([first, end]) = self.sides {
-            eliminate(self.end(first, true), 0);
-            (1..n).for_each(|key| eliminate(self.inner(key - 1, key), key));
-            eliminate(self.end(end, false), n);
-            return Elimination { segments: self.segments, rows, seam: None };
-        }
-        (1..n).for_each(|key| eliminate(self.inner(key - 1, key), key));
-        // From the seam back; the seam itself is −1 of it.
-        let mut factors = vec![DMat3::IDENTITY * -1.0; n + 1];
-        let mut forward = DMat3::IDENTITY * -1.0;
-        for (row, factor) in rows.iter_mut().zip(&mut factors[1..]) {
-            forward = row.before * forward * -1.0;
-            *factor = forward;
-        }
-        for key in (1..n).rev() {
-            let behind = factors[key + 1];
-            factors[key] -= rows[key - 1].after * behind;
-        }
-        if let Some(row) = rows.first_mut() {
-            // What comes before it is the seam, and that is in the factors.
-            row.before = DMat3::ZERO;
-        }
-        let row = self.inner(n - 1, 0);
-        let anchor = anchor(0);
-        let (own, right) = self.split(&row, anchor);
-        let own = inverse(own - row.lower * factors[n - 1] - row.upper * factors[1]);
-        let seam = Seam { factors, row: Row { right, ..row }, own, anchor };
-        Elimination { segments: self.segments, rows, seam: Some(seam) }
-    }
-
-    /// What a row's own rate is multiplied by, and its right side, with the bend split at the rate `anchor`.
-    fn split(&self, row: &Row, anchor: DVec3) -> (DMat3, DVec3) {
-        let own = DMat3::from_diagonal(DVec3::splat(row.diagonal));
-        if row.bend == 0.0 || anchor == DVec3::ZERO {
-            return (own, row.right);
-        }
-        let Segment { slope, inverse, .. } = &self.segments[row.before];
-        let g = *inverse * anchor;
-        // `q'(w₀) w₀` is twice `q(w₀)`.
-        let right = row.right + row.bend * slope.turning_term(g);
-        (own + slope.turning_slope(g) * *inverse * row.bend, right)
+    /// The segments before two keys, whose turning bends their conditions, and how much.
+    #[inline(always)]
+    fn bend(&self, front: usize, back: usize) -> (Slope<f64x2>, f64x2) {
+        let slope = both(self.around(front)[0], self.around(back)[0]);
+        (slope, f64x2::new([self.conditions[front].bend, self.conditions[back].bend]))
     }
 }
 
 impl Elimination<'_> {
+    fn seam(&self, condition: &Condition, anchors: Option<&[Vector<f64>]>) -> Seam {
+        let System { segments, conditions, .. } = self.system;
+        let n = segments.len();
+        let one = Matrix::diagonal(1.0);
+        // The seam itself is −1 of it, at both of its keys.
+        let mut factors = vec![one * -1.0; n + 1];
+        if let ([first, ..], Some(last)) = (&conditions[..], n.checked_sub(2)) {
+            let before = segments[0].slope.jacobian() * first.lower;
+            let behind = segments[n - 1].slope.inverse_jacobian() * conditions[last].upper;
+            let (mut rights, mut found) =
+                (vec![Vector::zero(); conditions.len()], vec![Vector::zero(); n + 2]);
+            for column in 0..3 {
+                rights[0] = before.0[column];
+                rights[last] = if last == 0 { rights[0] } else { Vector::zero() } + behind.0[column];
+                self.substitute(&mut found, |i, _| beside(rights[i], rights[conditions.len() - 1 - i]));
+                for (factor, found) in factors[1..n].iter_mut().zip(&found[1..n]) {
+                    factor.0[column] = *found;
+                }
+            }
+        }
+        let bend = segments[n - 1].slope;
+        let (lower, upper) =
+            (bend.jacobian() * condition.lower, segments[0].slope.inverse_jacobian() * condition.upper);
+        let (mut own, mut right) = (one * condition.diagonal, condition.right);
+        let anchor = anchors.map_or(Vector::zero(), |rates| rates[0]);
+        let g = bend.inverse_jacobian() * anchor;
+        right = right + bend.turning_term(g);
+        own = own + bend.turning_slope(g) * bend.inverse_jacobian();
+        let own = inverse(own - lower * factors[n - 1] - upper * factors[1]);
+        Seam { factors, lower, upper, right, bend, own, anchor }
+    }
+
     /// One round: the rates that fulfil the conditions with what is left of the bends as `rates` have it.
-    fn solve(&self, rates: &[DVec3], next: &mut Vec<DVec3>) {
-        let left = |right: DVec3, bend: f64, segment: usize, apart: DVec3| {
-            let Segment { slope, inverse, .. } = &self.segments[segment];
-            if bend == 0.0 { right } else { right - bend * slope.turning_term(*inverse * apart) }
-        };
-        next.clear();
-        let first = usize::from(self.seam.is_some());
-        next.extend(std::iter::repeat_n(DVec3::ZERO, first));
-        let mut constant = DVec3::ZERO;
-        for (row, rate) in self.rows.iter().zip(&rates[first..]) {
-            let right = left(row.right, row.bend, row.segment, *rate - row.anchor);
-            constant = row.own * right - row.before * constant;
-            next.push(constant);
-        }
-        let mut after = DVec3::ZERO;
-        for (row, rate) in self.rows.iter().zip(&mut next[first..]).rev() {
-            after = *rate - row.after * after;
-            *rate = after;
-        }
-        let Some(Seam { factors, row, own, anchor }) = &self.seam else { return };
-        let n = self.segments.len();
-        let right = left(row.right, row.bend, row.before, rates[0] - *anchor);
-        // With one segment the seam is its own neighbour.
-        let [before, after] =
-            [n - 1, 1].map(|key| if key == 0 || key == n { DVec3::ZERO } else { next[key] });
-        let seam = *own * (right - row.lower * before - row.upper * after);
-        next.push(DVec3::ZERO);
+    fn solve(&self, rates: &[Vector<f64>], next: &mut [Vector<f64>]) {
+        Level::best().run(
+            #[inline(always)]
+            || {
+                self.substitute(
+                    next,
+                    #[inline(always)]
+                    |i, rung| self.right(rates, i, rung),
+                );
+            },
+        );
+        let Some(Seam { factors, lower, upper, right, bend, own, anchor }) = &self.seam else { return };
+        let n = self.system.segments.len();
+        let right = *right - bend.turning_term(bend.inverse_jacobian() * (rates[0] - *anchor));
+        next[0] = Vector::zero();
+        next[n] = Vector::zero();
+        let seam = *own * (right - *lower * next[n - 1] - *upper * next[1]);
         for (rate, factor) in next.iter_mut().zip(factors) {
-            *rate -= *factor * seam;
+            *rate = *rate - *factor * seam;
+        }
+    }
+
+    /// The right sides of a rung with what is left of the bends as `rates` have it.
+    #[inline(always)]
+    fn right(&self, rates: &[Vector<f64>], i: usize, rung: &Rung) -> Vector<f64x2> {
+        let System { first, conditions, .. } = self.system;
+        let [front, back] = [i, conditions.len() - 1 - i];
+        let moved = beside(rates[first + front], rates[first + back]) - rung.anchor;
+        let (slope, bend) = self.system.bend(front, back);
+        rung.right - slope.turning_term(slope.inverse_jacobian() * moved) * bend
+    }
+
+    /// The rates within of these right sides, a pair for each rung.
+    #[inline(always)]
+    fn substitute(&self, found: &mut [Vector<f64>], right: impl Fn(usize, &Rung) -> Vector<f64x2>) {
+        let len = self.system.conditions.len();
+        let found = &mut found[self.system.first..][..len];
+        let mut constant = Vector::zero();
+        for (i, rung) in self.rungs.iter().enumerate() {
+            constant = rung.own * (right(i, rung) - rung.inward * constant);
+            [found[i], found[len - 1 - i]] = one_by_one(constant);
+        }
+        let Some(rung) = self.rungs.last() else { return };
+        let ([front, back], [of_front, of_back]) = (one_by_one(constant), apart(rung.outward));
+        let met = self.join * (front - of_front * back);
+        let mut further = beside(met, back - of_back * met);
+        [found[len / 2 - 1], found[len / 2]] = one_by_one(further);
+        for (i, rung) in self.rungs.iter().enumerate().rev().skip(1) {
+            further = beside(found[i], found[len - 1 - i]) - rung.outward * further;
+            [found[i], found[len - 1 - i]] = one_by_one(further);
         }
     }
 }
 
 /// How far the rates moved at most, and the largest; `None` when one is no number.
-fn moved(rates: &[DVec3], next: &[DVec3]) -> Option<(f64, f64)> {
-    let (mut moved, mut size, mut all) = (0.0_f64, 0.0_f64, DVec3::ZERO);
+fn moved(rates: &[Vector<f64>], next: &[Vector<f64>]) -> Option<(f64, f64)> {
+    let (mut moved, mut size, mut all) = (0.0_f64, 0.0_f64, Vector::zero());
     for (rate, next) in rates.iter().zip(next) {
-        moved = moved.max((*next - *rate).length_squared());
-        size = size.max(next.length_squared());
-        all += *next;
+        let step = *next - *rate;
+        moved = moved.max(step.dot(step));
+        size = size.max(next.dot(*next));
+        all = all + *next;
     }
     // `max` passes over NaN, and a square overflows long before its parts do.
-    (all.is_finite() && size.is_finite() && moved.is_finite()).then(|| (moved.sqrt(), size.sqrt()))
+    let is_sound = all.0.iter().all(|part| part.is_finite()) && size.is_finite() && moved.is_finite();
+    is_sound.then(|| (moved.sqrt(), size.sqrt()))
 }
 
-/// The inverse of a matrix by its minors; all that is inverted here is far from singular.
-fn inverse(matrix: DMat3) -> DMat3 {
-    let DMat3 { x_axis: x, y_axis: y, z_axis: z } = matrix;
-    let [a, b, c] = [y.cross(z), z.cross(x), x.cross(y)];
-    let over = 1.0 / x.dot(a);
-    DMat3::from_cols(a * over, b * over, c * over).transpose()
+#[inline(always)]
+fn inverse(matrix: Matrix<f64>) -> Matrix<f64> {
+    let (adjugate, determinant) = matrix.adjugate();
+    adjugate * (1.0 / determinant)
+}
+
+#[inline(always)]
+fn beside(front: Vector<f64>, back: Vector<f64>) -> Vector<f64x2> {
+    let (Vector([x, y, z]), Vector([a, b, c])) = (front, back);
+    Vector([f64x2::new([x, a]), f64x2::new([y, b]), f64x2::new([z, c])])
+}
+
+#[inline(always)]
+fn one_by_one(both: Vector<f64x2>) -> [Vector<f64>; 2] {
+    let Vector([x, y, z]) = both;
+    let (x, y, z) = (x.to_array(), y.to_array(), z.to_array());
+    [Vector([x[0], y[0], z[0]]), Vector([x[1], y[1], z[1]])]
+}
+
+fn apart(both: Matrix<f64x2>) -> [Matrix<f64>; 2] {
+    let [x, y, z] = both.0.map(one_by_one);
+    [Matrix([x[0], y[0], z[0]]), Matrix([x[1], y[1], z[1]])]
+}
+
+#[inline(always)]
+fn both(front: &Slope, back: &Slope) -> Slope<f64x2> {
+    let (a, b) = (&front.rests, &back.rests);
+    Slope {
+        angles: beside(front.angles, back.angles),
+        rests: Rests {
+            cosine: f64x2::new([a.cosine, b.cosine]),
+            sine: f64x2::new([a.sine, b.sine]),
+            cotangent: f64x2::new([a.cotangent, b.cotangent]),
+            across: f64x2::new([a.across, b.across]),
+            twice_across: f64x2::new([a.twice_across, b.twice_across]),
+        },
+    }
 }

@@ -3,7 +3,7 @@
 use super::super::{Bivector, Rotor};
 use super::blocks::{Column, each_block, each_row, mend_rare};
 use super::level::Level;
-use super::real::{Polynomials, Real};
+use super::real::Real;
 use super::streams::{Parts, PartsMut};
 
 /// The rotors of turns given as plane angles in radians, row by row: [`Rotor::from_plane_angles`] within 1e-15 rad
@@ -75,10 +75,4 @@ pub fn log<F: Real>(level: Level, rotors: Parts<'_, F, 4>, out: PartsMut<'_, F, 
             );
         },
     );
-}
-
-/// `θ/sin θ` of `cos θ` from 0 to 1, for half a turn `θ`: what [`log()`] stretches the parts by.
-pub(in super::super) fn angle_over_sine(cosine: f64) -> f64 {
-    let (above, below) = Polynomials::angle_over_sine(cosine);
-    above / below
 }
