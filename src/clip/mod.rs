@@ -10,6 +10,7 @@ mod contact;
 mod continuity;
 mod copied_keys;
 mod degrees;
+mod difference;
 mod displace;
 mod feet;
 mod key_edit;
@@ -40,6 +41,7 @@ pub use contact::{
 pub use continuity::{continuous_angles, continuous_angles_to};
 pub use copied_keys::CopiedKeys;
 pub use degrees::{Degrees, Growing, is_whole};
+pub use difference::Difference;
 pub use displace::{Push, PushFrame, pushed};
 pub use feet::standing_feet;
 pub use key_edit::{KeyChange, KeyEdit, NewKey, with_key_edits};

@@ -188,18 +188,22 @@ impl RotationTrack {
         if self.keys.len() != other.keys.len() {
             return (0..self.keys.len()).collect();
         }
+        (0..self.keys.len()).filter(|&key| !self.same_numbers(key, other, key)).collect()
+    }
+
+    /// Whether a key and one of `other`'s hold the same numbers in every bit, in the file's own form.
+    pub(super) fn same_numbers(&self, key: usize, other: &Self, others: usize) -> bool {
         let same_triple = |a: [f64; 3], b: [f64; 3]| a.map(f64::to_bits) == b.map(f64::to_bits);
-        let differs = |key: &usize| match (&self.stored, &other.stored) {
-            (Stored::Angles(own), Stored::Angles(others)) => {
-                !same_triple(own.degrees.triple(*key), others.degrees.triple(*key))
+        match (&self.stored, &other.stored) {
+            (Stored::Angles(own), Stored::Angles(angles)) => {
+                same_triple(own.degrees.triple(key), angles.degrees.triple(others))
             }
-            (Stored::PlaneAngles(own), Stored::PlaneAngles(others)) => !same_triple(own[*key], others[*key]),
+            (Stored::PlaneAngles(own), Stored::PlaneAngles(angles)) => same_triple(own[key], angles[others]),
             _ => {
-                bits(self.keys.rotor(*key)) != bits(other.keys.rotor(*key))
-                    || self.tangent_bits(*key) != other.tangent_bits(*key)
+                bits(self.keys.rotor(key)) == bits(other.keys.rotor(others))
+                    && self.tangent_bits(key) == other.tangent_bits(others)
             }
-        };
-        (0..self.keys.len()).filter(differs).collect()
+        }
     }
 
     fn tangent_bits(&self, key: usize) -> Option<[[u64; 4]; 2]> {

@@ -1,11 +1,12 @@
 //! What changed between two clips, at all their frames, keys and the middles between.
 
 use std::collections::BTreeSet;
+use std::sync::Arc;
 
 use glam::DVec3;
 use rayon::prelude::*;
 
-use crate::clip::{Clip, RotationTrack, Stored, Times, Worlds};
+use crate::clip::{Clip, Difference, JointTracks, RotationTrack, Stored, Times, VectorTrack, Worlds};
 use crate::rotor::Rotor;
 use crate::skeleton::Skeleton;
 use crate::snag::Cancelled;
@@ -13,7 +14,6 @@ use crate::snag::Progress;
 
 use super::error::ProofError;
 use super::rates::{Peak, RateMeasure, rates};
-use super::untouched::{changed_turns, changed_vectors};
 
 /// What changed in one joint's turn relative to its parent.
 #[derive(Clone, Debug, PartialEq)]
@@ -256,6 +256,9 @@ pub(super) fn turn_at(clip: &Clip, joint: usize, time_secs: f64) -> Rotor {
     }
 }
 
+/// What turning by two rests and back may add.
+const ROUNDING_RAD: f64 = 1e-9;
+
 fn measure_joint(clips: [&Clip; 2], pair: [usize; 2], rests: [[Rotor; 2]; 2], times: &[f64]) -> JointMeasure {
     let same_rest = rests[0] == rests[1];
     let turns = [0, 1].map(|side| {
@@ -282,11 +285,10 @@ fn measure_joint(clips: [&Clip; 2], pair: [usize; 2], rests: [[Rotor; 2]; 2], ti
     let p95_rad = *changes.select_nth_unstable_by(place, f64::total_cmp).1;
 
     let tracks = [0, 1].map(|side| &clips[side].joints[pair[side]]);
-    let keys_changed = changed_turns(tracks[0].rotation.as_ref(), tracks[1].rotation.as_ref());
-    let is_same = |keys: Option<Vec<usize>>| keys.is_some_and(|keys| keys.is_empty());
-    let same_places =
-        is_same(changed_vectors(tracks[0].translation.as_ref(), tracks[1].translation.as_ref()))
-            && is_same(changed_vectors(tracks[0].scale.as_ref(), tracks[1].scale.as_ref()));
+    let differences = differences(tracks[0], tracks[1]);
+    let untouched = differences.iter().all(|found| found.as_ref().is_some_and(Difference::is_none));
+    let [turns_differ, _, _] = differences;
+    let keys_changed = turns_differ.map(|found| found.keys);
     let rates_of =
         |side: usize| tracks[side].rotation.as_ref().map(|track| rates(track, clips[0])).unwrap_or_default();
     JointMeasure {
@@ -296,7 +298,8 @@ fn measure_joint(clips: [&Clip; 2], pair: [usize; 2], rests: [[Rotor; 2]; 2], ti
         change,
         mean_rad,
         p95_rad,
-        untouched: same_places && keys_changed.as_ref().is_some_and(Vec::is_empty),
+        // A rest that differs moves what has no keys.
+        untouched: untouched && change.value < ROUNDING_RAD,
         keys_changed,
         rates_before: rates_of(0),
         rates_after: rates_of(1),
@@ -375,23 +378,39 @@ fn frames_untouched(before: &Clip, after: &Clip, joints: &[JointMeasure]) -> Opt
     }
     let mut touched: BTreeSet<usize> = BTreeSet::new();
     for joint in joints {
-        let keys = joint.keys_changed.as_ref()?;
-        if let Some(track) = after.rotation(joint.after_joint) {
-            touched.extend(keys.iter().map(|&key| after.grid.frame(track.times.at(key))));
-        }
-        let own = [&before.joints[joint.before_joint], &after.joints[joint.after_joint]];
-        for [old, new] in [own.map(|own| own.translation.as_ref()), own.map(|own| own.scale.as_ref())] {
-            // With other times nothing is where it was.
-            let Some(keys) = changed_vectors(old, new) else { return Some(0) };
-            let times = new.map(|track| &track.times);
-            touched.extend(
-                times
-                    .into_iter()
-                    .flat_map(|times| keys.iter().map(move |&key| after.grid.frame(times.at(key)))),
-            );
+        let tracks = &after.joints[joint.after_joint];
+        let times = [
+            tracks.rotation.as_ref().map(|track| &track.times),
+            tracks.translation.as_ref().map(|track| &track.times),
+            tracks.scale.as_ref().map(|track| &track.times),
+        ];
+        let none = Times::Listed(Arc::default());
+        for (found, times) in differences(&before.joints[joint.before_joint], tracks).into_iter().zip(times) {
+            touched.extend(found?.frames(times.unwrap_or(&none), &after.grid));
         }
     }
     Some(before.grid.count() - touched.len())
+}
+
+/// Where turns, places and sizes of a joint differ; `None` where bits say nothing.
+fn differences(before: &JointTracks, after: &JointTracks) -> [Option<Difference>; 3] {
+    let vectors = |before: Option<&VectorTrack>, after: Option<&VectorTrack>| {
+        Some(match (before, after) {
+            (Some(before), Some(after)) => after.difference(before),
+            (None, None) => Difference::default(),
+            (_, after) => Difference::whole(after.map_or(0, |track| track.keys.len())),
+        })
+    };
+    let turns = match (&before.rotation, &after.rotation) {
+        (Some(before), Some(after)) => after.difference(before),
+        (None, None) => Some(Difference::default()),
+        (_, after) => Some(Difference::whole(after.as_ref().map_or(0, |track| track.keys.len()))),
+    };
+    [
+        turns,
+        vectors(before.translation.as_ref(), after.translation.as_ref()),
+        vectors(before.scale.as_ref(), after.scale.as_ref()),
+    ]
 }
 
 /// The tracks of turns, of carriers too: the file holds them.

@@ -15,7 +15,6 @@ mod retarget_sheet;
 mod sheet;
 mod sheet_html;
 mod sheet_json;
-mod untouched;
 
 pub use build::{Pair, sheet};
 pub use compare::{Looked, compare, compare_with};

@@ -2,7 +2,7 @@
 
 use std::collections::BTreeSet;
 
-use crate::clip::Clip;
+use crate::clip::{Clip, Difference, Times};
 
 use super::sampled::rotation_at;
 use super::words::{counted, degrees};
@@ -14,9 +14,11 @@ pub struct Changes {
     pub joints: usize,
     /// The result has another skeleton: all its joints and frames are new.
     pub other_skeleton: bool,
-    /// Frames at which some joint has other numbers.
+    /// Frames of the result at which some joint has other numbers, or plays otherwise between keys.
     pub frames: usize,
-    /// The largest turn between before and after at a changed key, in degrees, and the joint's label.
+    /// By how many frames the result is longer than the source, or shorter where below 0.
+    pub longer: isize,
+    /// The largest turn between before and after at a changed frame or key, as far as both last, in degrees.
     pub largest_deg: f64,
     /// The joint of the largest change.
     pub largest_joint: Option<String>,
@@ -37,6 +39,7 @@ impl Changes {
             joints: self.joints + other.joints,
             other_skeleton: self.other_skeleton || other.other_skeleton,
             frames: self.frames + other.frames,
+            longer: self.longer + other.longer,
             largest_deg: larger.largest_deg,
             largest_joint: larger.largest_joint.clone(),
             over_time: larger.over_time.clone(),
@@ -48,15 +51,20 @@ impl Changes {
         if self.joints == 0 {
             return "Nothing is changed".to_owned();
         }
+        let longer = match self.longer {
+            0 => String::new(),
+            frames if frames > 0 => format!("; {} longer", counted(frames.unsigned_abs(), "frame")),
+            frames => format!("; {} shorter", counted(frames.unsigned_abs(), "frame")),
+        };
         let place = format!("{} of {}", counted(self.frames, "frame"), counted(self.joints, "joint"));
         if self.other_skeleton {
             return format!("{place} carried to another skeleton");
         }
         match &self.largest_joint {
             Some(joint) if self.largest_deg >= 5e-3 => {
-                format!("{place} changed, at most by {} ({joint})", degrees(self.largest_deg))
+                format!("{place} changed, at most by {} ({joint}){longer}", degrees(self.largest_deg))
             }
-            _ => format!("{place} rewritten; no pose moves"),
+            _ => format!("{place} rewritten; no pose moves{longer}"),
         }
     }
 }
@@ -68,8 +76,11 @@ pub fn changes(source: &Clip, result: &Clip) -> Changes {
         let (joints, frames) = (result.skeleton.listed().count(), result.grid.count());
         return Changes { joints, frames, other_skeleton: true, ..Changes::default() };
     }
-    let mut found = Changes::default();
-    let mut frames = BTreeSet::new();
+    let longer = result.grid.count() as isize - source.grid.count() as isize;
+    // The last frame of one may differ from that of the other by rounding.
+    let both = source.duration_secs.min(result.duration_secs) + 1e-6;
+    let mut found = Changes { longer, ..Changes::default() };
+    let mut frames: BTreeSet<usize> = BTreeSet::new();
     let mut stretches = vec![0.0_f64; MOST_POINTS.min(result.grid.count())];
     for joint in 0..result.joints.len() {
         if source.same_joint(result, joint) {
@@ -77,9 +88,20 @@ pub fn changes(source: &Clip, result: &Clip) -> Changes {
         }
         found.joints += 1;
         let (Some(before), Some(after)) = (source.rotation(joint), result.rotation(joint)) else { continue };
-        for key in after.changed_keys(before) {
-            let time = after.times.at(key);
-            frames.insert(result.grid.frame(time));
+        let differing = after.difference(before).unwrap_or_else(|| Difference::whole(after.keys.len()));
+        let own: BTreeSet<usize> = differing.frames(&after.times, &result.grid).collect();
+        frames.extend(&own);
+        // Keys of both that lie between frames, and what lies between keys far apart.
+        let between = |time: &f64| (result.grid.time(result.grid.frame(*time)) - time).abs() > 1e-6;
+        let at_keys = differing.keys.iter().map(|&key| after.times.at(key)).filter(between);
+        let wide = differing.stretches.iter().filter(|[start, end]| (end - start) * result.grid.rate > 1.5);
+        let within = wide.flat_map(|&[start, end]| {
+            let gone = times_within(&before.times, [start, end]).filter(between);
+            gone.chain(std::iter::once(0.5 * (start + end)))
+        });
+        let at_frames = own.iter().map(|&frame| result.grid.time(frame));
+        let times = at_frames.chain(at_keys).chain(within);
+        for time in times.filter(|time| (0.0..=both).contains(time)) {
             let turn =
                 rotation_at(source, joint, time).turn_to(rotation_at(result, joint, time)).to_degrees();
             let stretch = stretch_of(result.grid.frame(time), result.grid.count(), stretches.len());
@@ -99,6 +121,13 @@ pub fn changes(source: &Clip, result: &Clip) -> Changes {
         found.over_time = stretches.iter().enumerate().map(|(stretch, &deg)| [time(stretch), deg]).collect();
     }
     found
+}
+
+/// Times of keys within a stretch.
+fn times_within(times: &Times, [start, end]: [f64; 2]) -> impl Iterator<Item = f64> + '_ {
+    let first = if start.is_finite() && !times.is_empty() { times.nearest(start) } else { 0 };
+    let rest = (first..times.len()).map(|key| times.at(key));
+    rest.skip_while(move |time| *time <= start).take_while(move |time| *time < end)
 }
 
 /// Which of `stretches` equal parts of the clip a frame falls into.
