@@ -201,7 +201,7 @@ mod tests {
 
     /// That a frame plays the same says nothing of its numbers; that it plays otherwise says that it differs.
     fn holds_all_that_plays_otherwise(after: &RotationTrack, before: &RotationTrack) {
-        let found = frames(&after.difference(before).unwrap(), after);
+        let found = frames(&after.difference(before).expect("of one form"), after);
         for frame in 0..=10 {
             let time = f64::from(frame);
             let is_other = after.at(time).turn_to(before.at(time)) > 1e-9;

@@ -139,7 +139,7 @@ pub enum OpenError {
     #[error(transparent)]
     Disk(#[from] disk::DiskError),
     /// No format of ours.
-    #[error("{path}: extension: expected .gltf, .glb, .bvh or .csv, found {found}; rename or convert the file", path = path.display())]
+    #[error("{path}: extension: expected .gltf, .glb, .bvh, .csv or .ron, found {found}; rename or convert the file", path = path.display())]
     Extension {
         /// The file.
         path: PathBuf,

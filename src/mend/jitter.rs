@@ -62,6 +62,9 @@ const EVEN: f64 = 0.05;
 /// No pose is moved by more than so many deviations of the noise, but for outliers.
 const MOST_DEVIATIONS: f64 = 6.0;
 
+/// Nor by more than this, in radians (30°): what is farther off is a flip that is left to a person, or was not looked for.
+const MOST_RAD: f64 = 0.52;
+
 /// So few keys in a row that lie farther off are spikes in the noise: they tell nothing, and are drawn from the poses around. Taking them out
 /// shows others that they had hidden, in so many rounds.
 const MOST_OUTLIERS: usize = 4;
@@ -126,7 +129,7 @@ fn smoothed(
     let weights = (0..to - from).map(|i| if trembles.contains(&i) { 1.0 } else { weight }).collect();
     let ease = ease(&times, step_secs);
     let mut task = Task { own, told, weights, ease, trembles, step_secs, noise_rad };
-    let most = MOST_DEVIATIONS * noise.sigma_rad;
+    let most = (MOST_DEVIATIONS * noise.sigma_rad).min(MOST_RAD);
     let change_of = |fitted: &Table, i: usize| {
         let row = fitted.row(i);
         let pose = base[i] * Rotor::from_plane_angles(Bivector::new(row[0], row[1], row[2]));
@@ -149,7 +152,10 @@ fn smoothed(
     let smoothed = task.trembles.clone().map(|i| {
         let change = change_of(&fitted, i);
         let is_outlier = task.weights[i] <= 0.0;
-        let share = if is_outlier { 1.0 } else { (most / change.length().max(f64::MIN_POSITIVE)).min(1.0) };
+        let share = match change.length() {
+            size if is_outlier => f64::from(u8::from(size <= MOST_RAD)),
+            size => (most / size.max(f64::MIN_POSITIVE)).min(1.0),
+        };
         (poses[i] * Rotor::from_plane_angles(change * share)).normalize()
     });
     Some(smoothed.collect())

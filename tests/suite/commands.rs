@@ -573,7 +573,7 @@ fn slips_are_told_in_one_line() {
         ("snags missing.bvh", "missing.bvh: cannot read"),
         ("snags folder", "folder: expected a file, found a folder"),
         ("snags folder.bvh", "folder.bvh: expected a file, found a folder"),
-        ("snags notes.txt", "expected .gltf, .glb, .bvh or .csv, found .txt"),
+        ("snags notes.txt", "expected .gltf, .glb, .bvh, .csv or .ron, found .txt"),
         ("snags empty.bvh", "empty.bvh: "),
         ("snags empty.glb", "empty.glb: "),
         ("snags empty.csv", "empty.csv: "),

@@ -3,10 +3,10 @@
 use std::path::Path;
 use std::sync::Arc;
 
-use turnwright::clip::{Clip, cut};
+use turnwright::clip::{Clip, JointTracks, PathKind, Paths, RotationTrack, Times, cut};
 use turnwright::exchange::{self, OpenOptions, Source, disk, encode};
 use turnwright::proof::{self, ClipProof, FileFacts, Measurement, Sheet, sheet_html, sheet_json};
-use turnwright::rotor::Axis;
+use turnwright::rotor::{Axis, Rotor};
 use turnwright::snag::Unwatched;
 
 use crate::support::{assert_close, number, shared};
@@ -205,4 +205,74 @@ fn the_object_holds_plain_numbers() {
     assert_eq!(clip["snags_gone"], clip["snags_before"]);
     let snags = object["snags"].as_array().unwrap();
     assert!(snags.iter().any(|snag| snag["kind"] == "half-turn" && snag["state"] == "gone"), "{snags:?}");
+}
+
+/// Some keys of a track of rotors.
+fn only(track: &RotationTrack, keys: &[usize]) -> RotationTrack {
+    let times: Vec<f64> = keys.iter().map(|&key| track.times.at(key)).collect();
+    let keys: Vec<Rotor> = keys.iter().map(|&key| track.keys[key]).collect();
+    RotationTrack::from_rotors(Times::Listed(times.into()), keys)
+}
+
+/// The joint that turns farthest from its first pose.
+fn most_turning(clip: &Clip) -> usize {
+    let travel = |joint: usize| {
+        let track = clip.rotation(joint)?;
+        let first = track.sound_key(0);
+        Some((0..track.keys.len()).map(|key| track.sound_key(key).turn_to(first)).fold(0.0, f64::max))
+    };
+    let by_travel = |a: &usize, b: &usize| travel(*a).partial_cmp(&travel(*b)).expect("turns are numbers");
+    (0..clip.joints.len()).max_by(by_travel).expect("there are joints")
+}
+
+/// A clip with the turns of a joint as `change` makes them.
+fn with_joint(clip: &Clip, joint: usize, change: impl Fn(&RotationTrack) -> RotationTrack) -> Clip {
+    let mut changed = clip.clone();
+    let rotation = changed.joints[joint].rotation.as_ref().map(change);
+    changed.joints[joint] = Arc::new(JointTracks { rotation, ..(*changed.joints[joint]).clone() });
+    changed
+}
+
+/// Every frame that is told as untouched plays the same in all joints, and the joint itself is not.
+fn tells_no_moved_frame_untouched(before: &Clip, after: &Clip, joint: usize) -> usize {
+    let found = measure(before, after);
+    let moved = |frame: usize| {
+        let secs = before.grid.time(frame);
+        let [own, others] = [before, after].map(|clip| clip.rotation(joint).expect("it turns").at(secs));
+        own.turn_to(others) > 1e-9
+    };
+    let moved = (0..before.grid.count()).filter(|&frame| moved(frame)).count();
+    assert!(moved > 0, "the change shows");
+    assert!(found.frames_untouched.expect("of one form") + moved <= found.frames, "{found:?}");
+    let own = found.joints.iter().find(|own| own.before_joint == joint).expect("it is measured");
+    assert!(!own.untouched && own.change.value > 0.0);
+    assert_eq!(found.joints_untouched(), found.joints.len() - 1);
+    moved
+}
+
+#[test]
+fn frames_between_keys_that_went_are_touched() {
+    let source = open("demo-scenes/heron.glb");
+    let clip = &source.clips[0];
+    let joint = most_turning(clip);
+    let after = with_joint(clip, joint, |track| {
+        let keys: Vec<usize> =
+            (0..track.keys.len()).filter(|key| *key < 5 || *key + 5 > track.keys.len()).collect();
+        only(track, &keys)
+    });
+    let moved = tells_no_moved_frame_untouched(clip, &after, joint);
+    assert!(measure(clip, &after).frames_untouched.unwrap() >= 5, "the keys that stayed: {moved} moved");
+}
+
+#[test]
+fn other_paths_between_the_same_keys_are_a_change() {
+    let source = open("demo-scenes/heron.glb");
+    let sparse = |track: &RotationTrack| only(track, &(0..track.keys.len()).step_by(6).collect::<Vec<_>>());
+    let joint = most_turning(&source.clips[0]);
+    let clip = with_joint(&source.clips[0], joint, sparse);
+    for kind in [PathKind::Hold, PathKind::Spline, PathKind::BSpline] {
+        let after =
+            with_joint(&clip, joint, |track| RotationTrack { paths: Paths::Every(kind), ..track.clone() });
+        tells_no_moved_frame_untouched(&clip, &after, joint);
+    }
 }

@@ -73,7 +73,12 @@ fn empty_words(scope: &Scope<'_>, total: usize) -> &'static str {
     } else if total > 0 {
         "No snag passes the filter"
     } else if scope.bench.findings().is_some_and(|findings| findings.snags.is_some()) {
-        "No snags: every joint turns as it should"
+        // The list is of the clip as it came in.
+        if scope.bench.work().is_some_and(|work| !work.passes.is_empty()) {
+            "No snags in the source. What passes bring is told by the proof sheet of an export"
+        } else {
+            "No snags: every joint turns as it should"
+        }
     } else {
         "Not searched yet: Snags, Find again (F5)"
     }

@@ -48,14 +48,14 @@ impl Changes {
 
     /// One sentence for people.
     pub fn sentence(&self) -> String {
-        if self.joints == 0 {
-            return "Nothing is changed".to_owned();
-        }
         let longer = match self.longer {
             0 => String::new(),
             frames if frames > 0 => format!("; {} longer", counted(frames.unsigned_abs(), "frame")),
             frames => format!("; {} shorter", counted(frames.unsigned_abs(), "frame")),
         };
+        if self.joints == 0 {
+            return format!("Nothing is changed{longer}");
+        }
         let place = format!("{} of {}", counted(self.frames, "frame"), counted(self.joints, "joint"));
         if self.other_skeleton {
             return format!("{place} carried to another skeleton");
@@ -89,7 +89,9 @@ pub fn changes(source: &Clip, result: &Clip) -> Changes {
         found.joints += 1;
         let (Some(before), Some(after)) = (source.rotation(joint), result.rotation(joint)) else { continue };
         let differing = after.difference(before).unwrap_or_else(|| Difference::whole(after.keys.len()));
-        let own: BTreeSet<usize> = differing.frames(&after.times, &result.grid).collect();
+        // Frames that the source has not are told as such.
+        let is_in_both = |frame: &usize| result.grid.time(*frame) <= both;
+        let own: BTreeSet<usize> = differing.frames(&after.times, &result.grid).filter(is_in_both).collect();
         frames.extend(&own);
         // Keys of both that lie between frames, and what lies between keys far apart.
         let between = |time: &f64| (result.grid.time(result.grid.frame(*time)) - time).abs() > 1e-6;
@@ -133,4 +135,76 @@ fn times_within(times: &Times, [start, end]: [f64; 2]) -> impl Iterator<Item = f
 /// Which of `stretches` equal parts of the clip a frame falls into.
 fn stretch_of(frame: usize, frames: usize, stretches: usize) -> usize {
     (frame * stretches).checked_div(frames).unwrap_or(0).min(stretches.saturating_sub(1))
+}
+
+#[cfg(test)]
+mod tests {
+    use std::path::Path;
+    use std::sync::Arc;
+
+    use super::*;
+    use crate::clip::{JointTracks, PathKind, Paths, RotationTrack};
+    use crate::demo;
+    use crate::exchange::{self, OpenOptions};
+
+    /// Some keys of a track of rotors.
+    fn only(track: &RotationTrack, keys: impl Iterator<Item = usize> + Clone) -> RotationTrack {
+        let times: Vec<f64> = keys.clone().map(|key| track.times.at(key)).collect();
+        RotationTrack::from_rotors(
+            Times::Listed(times.into()),
+            keys.map(|key| track.keys[key]).collect::<Vec<_>>(),
+        )
+    }
+
+    /// The heron's clip with the turns of its first moving joint as `change` makes them.
+    fn with_one_joint(clip: &Clip, change: impl Fn(&RotationTrack) -> RotationTrack) -> Clip {
+        let moving = |joint: &usize| {
+            clip.rotation(*joint).is_some_and(|track| {
+                track.keys.len() > 20 && track.sound_key(0).turn_to(track.sound_key(15)) > 0.02
+            })
+        };
+        let joint = (0..clip.joints.len()).find(moving).expect("a joint moves");
+        let mut changed = clip.clone();
+        let rotation = changed.joints[joint].rotation.as_ref().map(change);
+        changed.joints[joint] = Arc::new(JointTracks { rotation, ..(*changed.joints[joint]).clone() });
+        changed
+    }
+
+    #[test]
+    fn keys_that_went_move_the_poses_between() {
+        let clip = clip();
+        let result = with_one_joint(&clip, |track| only(track, (0..3).chain([track.keys.len() - 1])));
+        let found = changes(&clip, &result);
+        assert!(found.largest_deg > 0.5, "{found:?}");
+        assert_eq!((found.joints, found.frames, found.longer), (1, clip.grid.count() - 4, 0));
+        assert!(!found.over_time.is_empty() && !found.sentence().contains("no pose moves"), "{found:?}");
+    }
+
+    #[test]
+    fn another_path_between_keys_moves_poses() {
+        let sparse = |track: &RotationTrack| only(track, (0..track.keys.len()).step_by(7));
+        let clip = clip();
+        let before = with_one_joint(&clip, sparse);
+        let held =
+            |track: &RotationTrack| RotationTrack { paths: Paths::Every(PathKind::Hold), ..sparse(track) };
+        let found = changes(&before, &with_one_joint(&clip, held));
+        assert!(found.largest_deg > 0.1 && found.frames > 7, "{found:?}");
+    }
+
+    #[test]
+    fn what_is_longer_is_told_apart_from_what_moved() {
+        let clip = clip();
+        let longer = crate::clip::FrameGrid::even(clip.grid.rate, clip.duration_secs + 1.0);
+        let result = Clip { duration_secs: clip.duration_secs + 1.0, grid: longer, ..clip.clone() };
+        let found = changes(&clip, &result);
+        assert_eq!(found.longer, clip.grid.rate.round() as isize, "{found:?}");
+        assert_eq!((found.joints, found.largest_deg), (0, 0.0));
+    }
+
+    fn clip() -> Clip {
+        let scene = demo::SCENES.iter().find(|scene| scene.name == "heron").expect("there is a heron");
+        let bytes = scene.clip_bytes.to_vec();
+        let source = exchange::open_bytes(Path::new(scene.clip_file), bytes, &OpenOptions::default());
+        (*source.expect("it opens").clips[0]).clone()
+    }
 }

@@ -28,6 +28,15 @@ pub(crate) fn run(args: &SampleArgs, output: &mut Output) -> Result<u8, CliError
     let times = times(args, clip, joints.len())?;
     let path = args.path.map(PathName::kind);
     tell_faults(args, clip, path, output);
+    let is_outside = |secs: &&f64| !(0.0..=clip.duration_secs + 1e-6).contains(*secs);
+    if let (Some(outside), Some(_)) = (times.iter().find(is_outside), &args.at) {
+        let text = format!(
+            "the clip goes from 0 to {} s: at {} s its pose at the nearer end is told",
+            shown(clip.duration_secs),
+            shown(*outside)
+        );
+        output.note(Path::new(&args.clip), &text);
+    }
     let poses: Vec<Vec<Place>> =
         times.chunks(TIMES_AT_ONCE).flat_map(|times| poses(clip, args.world, path, &joints, times)).collect();
     match args.format {
@@ -58,8 +67,9 @@ fn times(args: &SampleArgs, clip: &Clip, joints: usize) -> Result<Vec<f64>, CliE
     if !(rate.is_finite() && rate > 0.0) {
         return Err(error("--rate", "frames per second above 0".to_owned(), rate, "name a rate such as 30"));
     }
-    // A hair of slack: the last frame is meant where rounding puts the end just before it.
-    let last = (clip.duration_secs * rate + 1e-9).floor();
+    // A hair of slack: the last frame is meant where rounding, to 32 bits in some files, puts the end just before it.
+    let frames = clip.duration_secs * rate;
+    let last = (frames + frames * 2.0 * f64::from(f32::EPSILON) + 1e-9).floor();
     let most = (MOST_POSES / joints.max(1)) as f64;
     if last >= most {
         let expected = format!("a rate that gives at most {most} times for {joints} joints");

@@ -98,8 +98,13 @@ pub fn from_clip_to(clip: &Clip, out: &mut dyn Write) -> io::Result<Vec<Note>> {
         .collect();
     if let Some(first) = inner.first() {
         let text = format!(
-            "expected limbs of one length, found {} joints that move against their parents: written with positions",
-            inner.len()
+            "expected limbs of one length, found {} against {}: written with positions",
+            if inner.len() == 1 {
+                "1 joint that moves".to_owned()
+            } else {
+                format!("{} joints that move", inner.len())
+            },
+            if inner.len() == 1 { "its parent" } else { "their parents" }
         );
         notes.push(Note::new(format!("joint {first}"), text));
     }

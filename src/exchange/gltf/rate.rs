@@ -9,7 +9,13 @@ const RATE_OF_NOTHING: f64 = 30.0;
 /// More frames than this come from damaged times, not from motion: four hours at 240 a second.
 const MAX_FRAMES: f64 = 3_456_000.0;
 
-/// Frames per second from the middle one of all steps from key to key. A usual rate (or 1000/1001 of it) is taken where
+/// A rate whose frames hold no such share of the keys is not that of the clip.
+const MOST_KEYS: f64 = 0.9;
+/// And one that holds this share is, if it is the lowest.
+const NEARLY_ALL_KEYS: f64 = 0.98;
+
+/// Frames per second from the middle one of all steps from key to key; where keys lie beside its frames, the lowest usual rate whose frames
+/// hold them. A usual rate (or 1000/1001 of it) is taken where
 /// the step, over the whole length, is as near to it as times of 32 bits can tell; else a whole rate; else the step itself.
 ///
 /// `tracks` are the key times of each sampler in seconds, strictly rising; `duration_secs` is the last of all keys.
@@ -25,7 +31,30 @@ pub(super) fn frame_rate(tracks: &[&[f64]], duration_secs: f64) -> f64 {
     let blur = duration_secs.abs() * f64::from(f32::EPSILON) + f64::from(f32::MIN_POSITIVE);
     let (step, blur) = refined(median, blur, tracks).unwrap_or((median, blur));
     let rate = usual(step, blur).unwrap_or(1.0 / step);
+    let slack = ROUNDINGS * duration_secs.abs() * f64::from(f32::EPSILON);
+    let rate = if on_grid(tracks, rate, slack) < MOST_KEYS {
+        // Few keys, set by hand or left over: frames lie closer than keys.
+        finer(tracks, rate, slack).unwrap_or(rate)
+    } else {
+        rate
+    };
     rate.min(MAX_FRAMES / duration_secs.max(f64::MIN_POSITIVE))
+}
+
+/// The share of all keys that lie on frames of a rate, within `slack` seconds.
+fn on_grid(tracks: &[&[f64]], rate: f64, slack: f64) -> f64 {
+    let keys = || tracks.iter().flat_map(|times| times.iter());
+    let is_on = |secs: &&f64| ((*secs * rate).round() / rate - *secs).abs() <= slack;
+    keys().filter(is_on).count() as f64 / keys().count().max(1) as f64
+}
+
+/// The lowest usual rate above this one whose frames hold nearly all keys.
+fn finer(tracks: &[&[f64]], rate: f64, slack: f64) -> Option<f64> {
+    let mut rates: Vec<f64> = USUAL_RATES.iter().flat_map(|rate| [*rate, rate * 1000.0 / 1001.0]).collect();
+    rates.sort_by(f64::total_cmp);
+    // Frames so close that any time lies on one tell nothing.
+    let told = |own: &f64| *own > rate && slack * own < 0.05;
+    rates.into_iter().filter(told).find(|own| on_grid(tracks, *own, slack) >= NEARLY_ALL_KEYS)
 }
 
 /// The mean step of the even track with the most keys, and how far off it may be. The ends alone are rounded, so both
@@ -72,6 +101,28 @@ mod tests {
         more.sort_by(f64::total_cmp);
         let found = frame_rate(&[&more, &frames], frames[884]);
         assert!((found * 0.008_333 - 1.0).abs() < 1e-6, "{found}");
+    }
+
+    #[test]
+    fn a_few_keys_tell_the_frames_that_they_lie_on() {
+        let keys = |rate: f64, frames: &[u32]| -> Vec<f64> {
+            frames.iter().map(|frame| f64::from((f64::from(*frame) / rate) as f32)).collect()
+        };
+        for (rate, frames) in [
+            (24.0, &[0, 10, 25, 41, 60][..]),
+            (30.0, &[0, 7, 14, 15, 40, 61]),
+            (60.0, &[0, 3, 6, 9, 13, 16, 20, 23, 26, 299]),
+            (24_000.0 / 1001.0, &[0, 100, 250, 417, 1999]),
+        ] {
+            let times = keys(rate, frames);
+            let found = frame_rate(&[&times], *times.last().unwrap());
+            assert!((found - rate).abs() < 1e-9, "{rate}: found {found}");
+        }
+        // At even steps nothing says that there are frames between, and times on no frame have their middle step.
+        let even = keys(24.0, &[0, 10, 20, 30]);
+        assert!((frame_rate(&[&even], 1.25) - 2.4).abs() < 1e-6);
+        let loose = [0.0, 0.123_4, 0.251_7, 0.383_1, 0.502_9];
+        assert!(frame_rate(&[&loose], 0.502_9) < 9.0);
     }
 
     #[test]

@@ -516,6 +516,9 @@ fn last_of_run(levels: &Levels<'_>, keys: Range<usize>, shows: &impl Fn(&usize) 
 /// From this clarity on a span may be mended unasked.
 const SAFE_CLARITY: f64 = 1.0;
 
+/// Noise beyond this, in radians (12°), is more likely flips that nobody looked for.
+const SAFE_NOISE_RAD: f64 = 0.21;
+
 fn snag(scan: &Scan<'_>, levels: &Levels<'_>, span: Span) -> Snag {
     scan.snag(Finding {
         kind: SnagKind::Jitter,
@@ -527,7 +530,7 @@ fn snag(scan: &Scan<'_>, levels: &Levels<'_>, span: Span) -> Snag {
             quiet_rad: span.quiet.min(span.noise),
             apart_keys: levels.lag,
         },
-        safe: span.clarity >= SAFE_CLARITY,
+        safe: span.clarity >= SAFE_CLARITY && span.noise <= SAFE_NOISE_RAD,
         text: format!(
             "{} trembles by about {:.1}° {}",
             scan.label(),
