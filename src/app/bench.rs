@@ -422,6 +422,11 @@ impl Bench {
         self.session.joints().into_iter().filter_map(of_joint).collect()
     }
 
+    /// Another number for each document that is opened: what is kept of how a list was looked at belongs to one.
+    pub fn document_serial(&self) -> u64 {
+        self.project.as_ref().map_or(0, |project| project.serial)
+    }
+
     /// The clip that the result is compared with: the source, unless a pass has carried it to another skeleton. Joint numbers
     /// of the two mean the same joints.
     pub fn before(&self) -> Option<&Arc<Clip>> {

@@ -250,6 +250,8 @@ pub(crate) struct Pictures {
     pub canvas: Canvas,
     /// Floor and travel of the clip on show.
     pub stage: Memo<ClipKey, Arc<Stage>>,
+    /// The clip whose figure the camera was fitted to last.
+    pub fitted: Option<Arc<Clip>>,
     /// The joint under the pointer, in any panel.
     pub hovered: Option<usize>,
     /// A joint that lists are to bring into view.

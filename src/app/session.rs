@@ -7,6 +7,7 @@ use std::collections::BTreeSet;
 use crate::clip::Clip;
 use crate::raster::Camera;
 use crate::scene::{PassId, SnagMark};
+use crate::snag::SnagKind;
 
 mod space;
 
@@ -107,6 +108,8 @@ pub struct Session {
     pub choice: TimeChoice,
     /// What the curves show.
     pub curve_view: CurveView,
+    /// What they showed before a snag that is seen in the file's own numbers alone was chosen; `None`: nothing else since.
+    pub view_before_snag: Option<CurveView>,
     /// How the curves are set, and what is chosen on them.
     pub curves: CurveHabits,
     /// What the turn map shows.
@@ -157,6 +160,7 @@ impl Default for Session {
             window: TimeWindow::whole(1.0),
             choice: TimeChoice::default(),
             curve_view: CurveView::PlaneAngles,
+            view_before_snag: None,
             curves: CurveHabits::default(),
             heat_kind: HeatKind::TurnRate,
             worst_first: false,
@@ -196,6 +200,29 @@ impl Session {
         self.source_alone || self.source_held
     }
 
+    /// Shows a view of the curves that was asked for.
+    pub fn show_curves(&mut self, view: CurveView) {
+        self.curve_view = view;
+        self.view_before_snag = None;
+    }
+
+    /// The view of the curves that a person asked for last.
+    pub fn usual_view(&self) -> CurveView {
+        self.view_before_snag.unwrap_or(self.curve_view)
+    }
+
+    /// Shows the view in which a snag is seen: the file's own numbers, if it is in them alone. With the next snag that any view shows the
+    /// view comes back that was there before.
+    pub fn show_curves_of_snag(&mut self, kind: SnagKind) {
+        if !kind.keeps_pose() {
+            self.curve_view = self.view_before_snag.take().unwrap_or(self.curve_view);
+        } else if self.curve_view != CurveView::FileNumbers {
+            self.view_before_snag = Some(std::mem::replace(&mut self.curve_view, CurveView::FileNumbers));
+            // The range of values that was looked at is one of other numbers.
+            self.curves.values = None;
+        }
+    }
+
     /// Turns to another clip. Habits (views, colours, speed) stay; what belongs to the clip starts anew.
     pub fn turn_to(&mut self, work: usize, clip: Option<&Clip>) {
         *self = Self {
@@ -207,7 +234,7 @@ impl Session {
                 speed: self.playback.speed,
                 ..Playback::default()
             },
-            curve_view: self.curve_view,
+            curve_view: self.usual_view(),
             curves: self.curves.without_choice(),
             heat_kind: self.heat_kind,
             worst_first: self.worst_first,
@@ -241,6 +268,22 @@ fn first_moving_joint(clip: &Clip) -> Option<usize> {
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn a_snag_in_stored_numbers_alone_shows_them_until_the_next_other_snag() {
+        let mut session = Session { curve_view: CurveView::SwingTwist, ..Session::default() };
+        session.show_curves_of_snag(SnagKind::Wrap);
+        assert_eq!(session.curve_view, CurveView::FileNumbers);
+        session.show_curves_of_snag(SnagKind::SignFlip);
+        assert_eq!(session.curve_view, CurveView::FileNumbers);
+        session.show_curves_of_snag(SnagKind::Spike);
+        assert_eq!(session.curve_view, CurveView::SwingTwist, "the view from before");
+        // What a person asked for stays.
+        session.show_curves_of_snag(SnagKind::MirroredAngles);
+        session.show_curves(CurveView::FileNumbers);
+        session.show_curves_of_snag(SnagKind::Spike);
+        assert_eq!(session.curve_view, CurveView::FileNumbers);
+    }
 
     #[test]
     fn play_loops_inside_its_range_and_else_stops_at_the_end() {

@@ -225,6 +225,7 @@ impl Screen for Window {
     fn logic(&mut self, ctx: &Context) {
         self.take_answers(ctx);
         self.run_commands(ctx);
+        self.stay_in_time();
         self.order_work();
         self.settle_curves();
         self.keep_settings(ctx);

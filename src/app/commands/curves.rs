@@ -19,6 +19,7 @@ pub enum CurveAction {
     ChooseHere,
     ChooseRange,
     ChooseSegment,
+    OneSegment,
     MoreAbove,
     MoreBelow,
     NextLine,

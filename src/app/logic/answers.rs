@@ -8,7 +8,7 @@ use egui::Context;
 use super::super::bench::{Evaluated, FromClips, Project, Searched, SourceState, file_name};
 use super::super::commands::Action;
 use super::super::file_picker::{Picked, Purpose};
-use super::super::panels::{Dialog, Form, Level, Message};
+use super::super::panels::{Dialog, Form, Message};
 use super::super::view_models::{CurveKey, CurveSet, HeatMap, HeatWish, TimeWindow};
 use super::super::window::Window;
 use super::blend::BlendAnswer;
@@ -238,15 +238,8 @@ impl Window {
             )));
             return;
         }
-        let wanted = match clip.map(|text| (text, sources.first().and_then(|source| source.find_clip(text))))
-        {
-            Some((_, Some(index))) => Some(index),
-            Some((text, None)) => {
-                self.tell(Message::error(format!("expected one of the file's clips, found `{text}`")));
-                None
-            }
-            None => None,
-        };
+        let wanted = clip.and_then(|text| sources.first().and_then(|source| source.find_clip(text)));
+        let unknown = clip.filter(|_| wanted.is_none());
         let notes: Vec<(String, Vec<String>)> = sources
             .iter()
             .filter(|source| !source.notes.is_empty())
@@ -258,6 +251,9 @@ impl Window {
         let project = Project::of_sources(self.take_serial(), sources);
         let several = project.document().works.len() > 1 && wanted.is_none();
         self.show_project(project, wanted.unwrap_or(0));
+        if let Some(text) = unknown {
+            self.tell(Message::error(format!("expected one of the file's clips, found `{text}`")));
+        }
         self.tell_notes(notes);
         self.offer_skeleton();
         if several {
@@ -271,7 +267,7 @@ impl Window {
     }
 
     pub(in super::super) fn show_project(&mut self, project: Project, work: usize) {
-        self.messages.retain(|message| message.level == Level::Done);
+        self.messages.clear();
         self.dialog = None;
         self.bench.heat = None;
         self.bench.curves = None;

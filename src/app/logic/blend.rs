@@ -83,9 +83,9 @@ impl Window {
         let Some(second) = second else { return };
         let (work, pass) = (self.bench.session.work, self.bench.work().map(ClipWork::next_pass_id));
         let blend = new_blend(other, kind, first.duration_secs, second.duration_secs);
-        if let BlendForm::Join(place) = &blend.form {
-            let length = first.duration_secs + second.duration_secs - place.overlap_secs;
-            self.bench.session.window = TimeWindow::whole(length);
+        if matches!(blend.form, BlendForm::Join(_)) {
+            // Whoever sees all of the clip sees all of the longer one as soon as it is there.
+            self.bench.session.window = TimeWindow::whole(first.duration_secs);
         }
         self.bench.session.blend.shown = pass;
         self.bench.session.blend.shows_lane = true;

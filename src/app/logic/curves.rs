@@ -32,6 +32,9 @@ impl Window {
             CurveCommand::Choose(keys) => self.choose_keys(keys),
             CurveCommand::ChooseSegment(segment) => {
                 session.curves.segment = segment;
+                if segment.is_some() {
+                    session.curves.keys = KeyChoice::default();
+                }
                 self.bench.curve_hand.serial += 1;
             }
             CurveCommand::ChooseLine(line) => session.curves.line = line,
@@ -66,10 +69,7 @@ impl Window {
             C::Copy => self.copy_keys(),
             C::Paste | C::PasteMirrored => self.paste_keys(action == C::PasteMirrored),
             C::ChooseAll => self.choose_within([f64::NEG_INFINITY, f64::INFINITY]),
-            C::ChooseNone => {
-                self.choose_keys(KeyChoice::default());
-                self.bench.session.curves.segment = None;
-            }
+            C::ChooseNone => self.choose_keys(KeyChoice::default()),
             C::ChooseHere => self.choose_here(),
             C::ChooseRange => {
                 if let Some(span) = self.chosen_span() {
@@ -77,6 +77,7 @@ impl Window {
                 }
             }
             C::ChooseSegment => self.choose_segment_here(),
+            C::OneSegment => self.make_one_segment(),
             C::MoreAbove | C::MoreBelow => self.add_neighbour(action == C::MoreBelow),
             C::NextLine => {
                 let count = self.bench.curve_sets().first().map_or(1, |set| set.lines.len().clamp(1, 3));
@@ -110,8 +111,10 @@ impl Window {
         }
     }
 
+    /// Chooses keys; a segment that was chosen before is let go, for one thing is chosen at a time.
     pub(super) fn choose_keys(&mut self, keys: KeyChoice) {
         self.bench.session.curves.keys = keys;
+        self.bench.session.curves.segment = None;
         self.bench.curve_hand.serial += 1;
     }
 

@@ -16,6 +16,15 @@ impl Window {
         session.window = session.window.showing(session.playback.playhead_secs, duration);
     }
 
+    /// Keeps the playhead and the stretch of time on screen inside the result, which undo or a pass may have made shorter: what no clip
+    /// has must not be drawn.
+    pub(in super::super) fn stay_in_time(&mut self) {
+        let Some(duration) = self.bench.result().map(|clip| clip.duration_secs) else { return };
+        let session = &mut self.bench.session;
+        session.window = session.window.within(duration);
+        session.playback.playhead_secs = session.playback.playhead_secs.clamp(0.0, duration.max(0.0));
+    }
+
     pub(super) fn play_or_pause(&mut self) {
         let Some(duration) = self.bench.result().map(|clip| clip.duration_secs) else { return };
         let playback = &mut self.bench.session.playback;

@@ -76,7 +76,7 @@ impl Window {
     pub(in super::super) fn keep_settings(&mut self, ctx: &Context) {
         let own = &mut self.memory.settings;
         own.light = self.is_light;
-        self.bench.session.curve_view.label().clone_into(&mut own.curve_view);
+        self.bench.session.usual_view().label().clone_into(&mut own.curve_view);
         let Some(file) = &self.memory.file else { return };
         let is_busy = ctx.input(|input| {
             let viewport = input.viewport();

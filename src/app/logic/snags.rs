@@ -18,6 +18,7 @@ impl Window {
         session.snag = Some(SnagMark::of(&snag));
         session.joint = joint;
         session.window = window;
+        session.show_curves_of_snag(snag.kind);
         session.playback.is_playing = false;
         self.pictures.scroll_to_joint = joint;
         self.pictures.scroll_to_snag = true;

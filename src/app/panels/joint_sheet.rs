@@ -65,7 +65,8 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     let asked = scope.pictures.scroll_to_joint;
     let seen_before = std::mem::replace(&mut scope.pictures.tree_height, area.height());
     let kept = scope.bench.session.joint.filter(|_| area.height() < seen_before);
-    ScrollArea::vertical().id_salt("joint tree").auto_shrink(false).show_viewport(ui, |ui, viewport| {
+    let salt = ("joint tree", scope.bench.document_serial());
+    ScrollArea::vertical().id_salt(salt).auto_shrink(false).show_viewport(ui, |ui, viewport| {
         let top = ui.max_rect().top();
         ui.set_height(TREE_ROW * rows.len() as f32);
         if let Some(joint) = asked.or(kept)
@@ -140,7 +141,7 @@ fn tree_panel(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
 
 fn sheet_panel(ui: &mut Ui, scope: &mut Scope<'_>, numbers: &JointNumbers) {
     let look = scope.look;
-    let differs = numbers.before != numbers.after;
+    let differs = numbers.differs();
     ScrollArea::vertical().id_salt("joint numbers").auto_shrink(false).show(ui, |ui| {
         egui::Frame::NONE.inner_margin(egui::Margin::symmetric(INSET as i8 + 2, 6)).show(ui, |ui| {
             ui.spacing_mut().item_spacing.y = 1.0;

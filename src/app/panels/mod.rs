@@ -36,7 +36,7 @@ pub(crate) use blend_picture::DistanceKey;
 pub(crate) use curves::{Columns, CurvePress};
 pub(crate) use dialogs::{Dialog, Form, Then, dialogs_ui};
 pub(crate) use menus::menus_ui;
-pub(crate) use messages::{Level, Message, messages_ui};
+pub(crate) use messages::{Message, messages_ui};
 pub(crate) use transport::transport_ui;
 pub(crate) use welcome::welcome_ui;
 

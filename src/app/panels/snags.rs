@@ -8,7 +8,7 @@ use egui::{
 use super::super::commands::{Action, Command};
 use super::super::jobs::Slot;
 use super::super::theme::{INSET, Look, ROW_HEIGHT};
-use super::super::view_models::{Shared, SnagFilter, SnagOrder, SnagRow, SnagState};
+use super::super::view_models::{CurveView, Shared, SnagFilter, SnagOrder, SnagRow, SnagState};
 use super::super::widgets::{action_button, focus_ring, hint, letter_plate, name_ui, strip, tooltip_text};
 use super::Scope;
 use super::menus::entry_ui;
@@ -278,8 +278,8 @@ fn table_ui(ui: &mut Ui, rows: &[SnagRow], scope: &mut Scope<'_>) {
     let labels = clip.iter().flat_map(|clip| clip.skeleton.listed().map(|joint| clip.skeleton.label(joint)));
     let shared = Shared::of(labels);
     // Where hints take most of the room few rows are seen, and none over what is below.
-    let area_of_rows =
-        ScrollArea::vertical().id_salt("snag rows").auto_shrink(false).min_scrolled_height(0.0);
+    let salt = ("snag rows", scope.bench.document_serial());
+    let area_of_rows = ScrollArea::vertical().id_salt(salt).auto_shrink(false).min_scrolled_height(0.0);
     area_of_rows.show_viewport(ui, |ui, viewport| {
         let top = ui.max_rect().top();
         ui.set_height(ROW_HEIGHT * rows.len() as f32);
@@ -390,7 +390,14 @@ fn details_ui(ui: &mut Ui, footer: Rect, scope: &mut Scope<'_>) {
                 } else {
                     ""
                 };
-                format!("{looked}{} {}", sentence(&snag.text), snag.kind.mend_explanation())
+                // What is wrong in the numbers alone is seen in no other view.
+                let shown =
+                    if snag.kind.keeps_pose() && scope.bench.session.curve_view == CurveView::FileNumbers {
+                        " The curves show the file's own numbers, for only there it is seen."
+                    } else {
+                        ""
+                    };
+                format!("{looked}{}{shown} {}", sentence(&snag.text), snag.kind.mend_explanation())
             },
         );
         let mut job = egui::text::LayoutJob::simple(

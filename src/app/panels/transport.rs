@@ -226,7 +226,8 @@ fn scrub_bar(ui: &mut Ui, scope: &mut Scope<'_>, clip: &crate::clip::Clip) {
     response.widget_info(|| WidgetInfo::slider(true, now, "Scrub bar"));
     let duration = clip.duration_secs.max(1e-9);
     let rail = Rect::from_min_max(bounds.min + vec2(INSET, 11.0), bounds.max - vec2(INSET, 7.0));
-    let x = |time: f64| rail.left() + (time / duration) as f32 * rail.width();
+    // A loop or a choice may still end where the clip did before it became shorter.
+    let x = |time: f64| rail.left() + (time / duration).clamp(0.0, 1.0) as f32 * rail.width();
     let painter = ui.painter();
     painter.rect_filled(rail, 4.0, look.line);
     let (start, end) = playback.bounds(clip.duration_secs);

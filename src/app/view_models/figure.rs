@@ -52,7 +52,7 @@ pub struct Stage {
     pub travel: Bounds,
     /// How thick its limbs are.
     pub girth: Girth,
-    /// The joint that carries it.
+    /// The joint that carries it: the first that is moved itself, for above the hips a file may have joints that stand still.
     pub root: Option<usize>,
 }
 
@@ -66,7 +66,7 @@ impl Stage {
         let figure = bounds_at(clip, 0.0).unwrap_or(nowhere);
         let times = (0..=POSES).map(|pose| clip.duration_secs * pose as f64 / POSES as f64);
         let travel = times.filter_map(|time| bounds_at(clip, time)).fold(figure, |all, own| all.union(&own));
-        let root = clip.skeleton.listed().next();
+        let root = carrying_joint(clip, figure.size());
         Self { figure, travel, girth: Girth::of_limbs(&limbs_at(clip, 0.0)), root }
     }
 
@@ -82,6 +82,25 @@ impl Stage {
         let way = at(time_secs) - at(0.0);
         if way.is_finite() { DVec3::new(way.x, 0.0, way.z) } else { DVec3::ZERO }
     }
+}
+
+/// The first joint of a clip that is moved from its place by a share of the figure's size, by itself or, at the top, by what it hangs on;
+/// where none is, the first.
+fn carrying_joint(clip: &Clip, size: f64) -> Option<usize> {
+    /// Less is noise.
+    const LEAST_SHARE: f64 = 0.01;
+    let poses = || (0..=POSES).map(|pose| clip.duration_secs * pose as f64 / POSES as f64);
+    let travels = |place: &dyn Fn(f64) -> DVec3| {
+        let way = Bounds::of_points(poses().map(place).filter(|place| place.is_finite()));
+        way.is_some_and(|way| way.size() > LEAST_SHARE * size)
+    };
+    let is_moved = |&joint: &usize| {
+        let is_top = clip.skeleton.parent_joint(joint).is_none();
+        let has_track = clip.joints.get(joint).is_some_and(|tracks| tracks.translation.is_some());
+        (has_track && travels(&|secs| local(clip, joint, secs).translation))
+            || (is_top && travels(&|secs| scene_from_joint(clip, joint, secs).translation))
+    };
+    clip.skeleton.listed().find(is_moved).or_else(|| clip.skeleton.listed().next())
 }
 
 /// The box around a joint and all that hangs on its limbs' ends.

@@ -18,7 +18,7 @@ pub struct RotationNumbers {
     pub twist_deg: f64,
     /// Degrees a second over the frame before.
     pub turn_rate_deg: f64,
-    /// The stored numbers of the key at or before this time: names and values.
+    /// The stored numbers of the key at or before the frame nearest to this time: names and values.
     pub stored: Vec<(String, f64)>,
 }
 
@@ -43,6 +43,28 @@ pub struct JointNumbers {
     pub after: RotationNumbers,
     /// The turn between the two.
     pub change_deg: f64,
+}
+
+impl RotationNumbers {
+    /// Whether any number is another, as it is shown. What is no number is the same on both sides.
+    fn differs(&self, other: &Self) -> bool {
+        let is_same = |a: f64, b: f64| a == b || (a.is_nan() && b.is_nan());
+        let all = |of: &Self| {
+            let [yz, zx, xy] = of.plane_angles_deg;
+            [yz, zx, xy, of.turn_deg, of.swing_deg, of.twist_deg, of.turn_rate_deg]
+        };
+        let stored = self.stored.iter().zip(&other.stored);
+        self.stored.len() != other.stored.len()
+            || !all(self).into_iter().zip(all(other)).all(|(a, b)| is_same(a, b))
+            || !stored.into_iter().all(|(a, b)| a.0 == b.0 && is_same(a.1, b.1))
+    }
+}
+
+impl JointNumbers {
+    /// Whether the result has other numbers than the source.
+    pub fn differs(&self) -> bool {
+        self.before.differs(&self.after)
+    }
 }
 
 /// The numbers of a joint at a time.
@@ -89,8 +111,13 @@ fn rotation_numbers(clip: &Clip, joint: usize, time_secs: f64) -> RotationNumber
 }
 
 fn stored_numbers(clip: &Clip, joint: usize, time_secs: f64) -> Vec<(String, f64)> {
+    /// Keys and frames so near to each other are at one time: one of them may have been rounded to 32 bits.
+    const SAME_SECS: f64 = 1e-5;
     let Some(track) = clip.rotation(joint) else { return Vec::new() };
-    let key = match track.times.place(time_secs) {
+    // While a clip plays the time lies between frames: the numbers are those of the frame that is told beside them.
+    let frame_secs =
+        if clip.grid.count() > 0 { clip.grid.time(clip.grid.frame(time_secs)) } else { time_secs };
+    let key = match track.times.place(frame_secs + SAME_SECS) {
         None => return Vec::new(),
         Some(Place::At(key) | Place::Between(key, _)) => key,
     };

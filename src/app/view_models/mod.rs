@@ -69,7 +69,7 @@ pub use pyramid::Pyramid;
 pub use reach::{ReachOf, reach_of};
 pub use sampled::{SampleTimes, limb_direction, rotation_at};
 pub use snag_rows::{SnagFilter, SnagOrder, SnagRow, SnagState, snag_rows, snag_states};
-pub use stretch::{Stretch, is_frame_apart, shaped_rows, stretches, with_shaping};
+pub use stretch::{Stretch, is_frame_apart, one_stretch, segments, shaped_rows, with_shaping};
 pub use time_choice::TimeChoice;
 pub use time_window::{Tick, TimeWindow, ticks};
 pub use trail::Trail;

@@ -1,7 +1,7 @@
-//! What a path, a spacing or turns are given to: the segment between two keys, or a stretch of captured motion as a whole.
+//! What a path, a spacing or turns are given to: the segment between two keys, or a stretch of captured motion that was made one.
 //!
-//! Where a key stands at each frame there is no room between two keys for a path that anybody could see. There the chosen keys from
-//! the first to the last are one stretch: those between give way, and the path leads from its first key to its last.
+//! Where a key stands at each frame there is hardly room between two keys for a spacing or a turn. There a person may first make one
+//! segment of a stretch: the keys between its first and its last give way, and the path leads from one to the other.
 
 use crate::clip::{Clip, FrameGrid, KeyChange, KeyEdit, MeantTurn, PathKind, RotationTrack, Spacing};
 
@@ -26,41 +26,34 @@ pub fn is_frame_apart(grid: &FrameGrid, secs: f64) -> bool {
     secs * grid.rate < 1.5 && secs < LONGEST_SECS
 }
 
-/// What chosen keys (times in seconds, rising) of a joint's track mean to a path: each segment between two of them, with one key alone
-/// the segment it starts, and each run of captured keys as one stretch. Empty where there is nothing that a path could shape.
-pub fn stretches(joint: usize, track: &RotationTrack, grid: &FrameGrid, times: &[f64]) -> Vec<Stretch> {
+/// The segments that chosen keys (times in seconds, rising) of a joint's track mean: those that start at each but the last of them,
+/// with one key alone the one that starts there. All keys stay.
+pub fn segments(joint: usize, track: &RotationTrack, times: &[f64]) -> Vec<Stretch> {
     let keys: Vec<usize> = times.iter().filter_map(|&secs| key_at(track, secs)).collect();
-    let has_next = |key: usize| key + 1 < track.keys.len();
-    let is_short = |key: usize| is_frame_apart(grid, track.times.at(key + 1) - track.times.at(key));
-    let starts_at =
-        |key: usize, gone_secs: Vec<f64>| Stretch { joint, start_secs: track.times.at(key), gone_secs };
-    if let [only] = keys.as_slice() {
-        let fits = has_next(*only) && !is_short(*only);
-        return fits.then(|| starts_at(*only, Vec::new())).into_iter().collect();
-    }
-    let mut found = Vec::new();
-    let mut place = 0;
     // Behind the last chosen key nothing is meant.
-    while place + 1 < keys.len() {
-        let first = keys[place];
-        let run = keys[place..].windows(2).take_while(|pair| pair[1] == pair[0] + 1 && is_short(pair[0]));
-        let count = run.count();
-        if count > 1 {
-            let gone = (first + 1..first + count).map(|key| track.times.at(key));
-            found.push(starts_at(first, gone.collect()));
-        } else if has_next(first) && !is_short(first) {
-            found.push(starts_at(first, Vec::new()));
-        }
-        place += count.max(1);
-    }
-    found
+    let starts = if keys.len() > 1 { &keys[..keys.len() - 1] } else { &keys[..] };
+    let starts = starts.iter().filter(|&&key| key + 1 < track.keys.len());
+    starts.map(|&key| Stretch { joint, start_secs: track.times.at(key), gone_secs: Vec::new() }).collect()
+}
+
+/// The stretch from the first to the last chosen key of a joint's track as one segment: the keys between give way. `None` where there
+/// are none.
+pub fn one_stretch(joint: usize, track: &RotationTrack, times: &[f64]) -> Option<Stretch> {
+    let first = key_at(track, *times.first()?)?;
+    let last = key_at(track, *times.last()?)?;
+    let gone_secs: Vec<f64> = (first + 1..last).map(|key| track.times.at(key)).collect();
+    (!gone_secs.is_empty()).then(|| Stretch { joint, start_secs: track.times.at(first), gone_secs })
 }
 
 impl Stretch {
-    /// Whether edits that were made before have taken the keys out already.
-    pub fn is_known(&self, edits: &[KeyEdit]) -> bool {
-        let clears = |edit: &KeyEdit| matches!(edit.change, KeyChange::Delete(_));
-        self.gone_secs.is_empty() || self.shaping(edits).any(clears)
+    /// Whether a frame lies between its ends, so that its pace can be seen.
+    pub fn has_room(&self, track: &RotationTrack, grid: &FrameGrid) -> bool {
+        !is_frame_apart(grid, self.end_secs(track) - self.start_secs)
+    }
+
+    /// Whether all its keys are among the chosen ones.
+    pub fn is_chosen(&self, track: &RotationTrack, chosen: &KeyChoice) -> bool {
+        self.keys(track).times(self.joint).iter().all(|&secs| chosen.has(self.joint, secs))
     }
 
     /// Those of `edits` that shape it, in their order.
@@ -98,14 +91,15 @@ impl Stretch {
     }
 
     /// The edit that takes the keys out that give way.
-    pub fn clearing(&self) -> Option<KeyEdit> {
-        let change = || KeyChange::Delete(self.gone_secs.clone());
-        (!self.gone_secs.is_empty()).then(|| KeyEdit { joint: self.joint, change: change() })
+    pub fn clearing(&self) -> KeyEdit {
+        KeyEdit { joint: self.joint, change: KeyChange::Delete(self.gone_secs.clone()) }
     }
 
     /// Path and turns that it has: those of `edits`, which the track may not show because it keeps a file's rows, else the track's own.
     pub fn path_and_turn(&self, track: &RotationTrack, edits: &[KeyEdit]) -> (PathKind, MeantTurn) {
         let segment = key_at(track, self.start_secs).unwrap_or(0);
+        // A segment between keys that stand shows its own.
+        let edits = if self.gone_secs.is_empty() { &[] } else { edits };
         let own = (track.kind_of(segment, None), track.segments.of(segment).turn);
         self.shaping(edits).fold(own, |(kind, turn), edit| match &edit.change {
             KeyChange::Path(_, new) => (*new, turn),
@@ -155,26 +149,34 @@ mod tests {
         RotationTrack::from_rotors(Times::Listed(times.into()), vec![Rotor::IDENTITY; times.len()])
     }
 
-    #[track_caller]
-    fn check(times: &[f64], chosen: &[f64], expected: &[(f64, &[f64])]) {
-        let found = stretches(3, &track(times), &FrameGrid::even(10.0, 4.0), chosen);
-        let expected: Vec<Stretch> = expected
-            .iter()
-            .map(|&(start_secs, gone)| Stretch { joint: 3, start_secs, gone_secs: gone.to_vec() })
-            .collect();
-        assert_eq!(found, expected);
+    #[test]
+    fn chosen_keys_mean_the_segments_that_start_at_them_and_all_keys_stay() {
+        let times = [0.0, 0.09, 0.18, 0.27, 1.0, 2.0];
+        let (track, grid) = (track(&times), FrameGrid::even(10.0, 4.0));
+        let check = |chosen: &[f64], expected: &[f64]| {
+            let found = segments(3, &track, chosen);
+            let starts: Vec<f64> = found.iter().map(|own| own.start_secs).collect();
+            assert_eq!(starts, expected);
+            assert!(found.iter().all(|own| own.joint == 3 && own.gone_secs.is_empty()));
+        };
+        check(&[1.0], &[1.0]);
+        check(&[2.0], &[]);
+        check(&[0.0, 0.09, 0.18], &[0.0, 0.09]);
+        check(&times, &times[..5]);
+        let room: Vec<bool> =
+            segments(3, &track, &times).iter().map(|own| own.has_room(&track, &grid)).collect();
+        // Ten frames a second would be 0.1 s apart, which is no capture: 0.09 is.
+        assert_eq!(room, [false, false, false, true, true]);
     }
 
     #[test]
-    fn sparse_keys_mean_their_segments_and_captured_ones_a_stretch() {
-        // Ten frames a second would be 0.1 s apart, which is no capture: 0.09 is.
-        let times = [0.0, 0.09, 0.18, 0.27, 1.0, 2.0];
-        check(&times, &[1.0], &[(1.0, &[])]);
-        check(&times, &[2.0], &[]);
-        check(&times, &[0.27, 1.0, 2.0], &[(0.27, &[]), (1.0, &[])]);
-        check(&times, &[0.0], &[]);
-        check(&times, &[0.0, 0.09], &[]);
-        check(&times, &[0.0, 0.09, 0.18, 0.27], &[(0.0, &[0.09, 0.18])]);
-        check(&times, &[0.0, 0.09, 0.18, 0.27, 1.0], &[(0.0, &[0.09, 0.18]), (0.27, &[])]);
+    fn one_segment_leads_from_the_first_to_the_last_chosen_key() {
+        let track = track(&[0.0, 0.09, 0.18, 0.27, 1.0, 2.0]);
+        let of = |chosen: &[f64]| one_stretch(3, &track, chosen).map(|own| (own.start_secs, own.gone_secs));
+        assert_eq!(of(&[0.09, 1.0]), Some((0.09, vec![0.18, 0.27])));
+        assert_eq!(of(&[0.27, 1.0, 2.0]), Some((0.27, vec![1.0])));
+        assert_eq!(of(&[1.0, 2.0]), None, "there is none between");
+        assert_eq!(of(&[1.0]), None);
+        assert_eq!(of(&[]), None);
     }
 }

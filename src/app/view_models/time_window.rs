@@ -82,6 +82,14 @@ impl TimeWindow {
         self.pan(shift, duration_secs)
     }
 
+    /// The same stretch as far as there is such a time, else as near to it as the clip goes.
+    #[must_use]
+    pub fn within(&self, duration_secs: f64) -> Self {
+        let whole = Self::whole(duration_secs);
+        // The rest of a sum must not move a window that lies inside.
+        if self.end_secs <= whole.end_secs { *self } else { self.held_inside(whole) }
+    }
+
     fn held_inside(self, whole: Self) -> Self {
         let span = self.span().min(whole.span());
         let start_secs = self.start_secs.clamp(0.0, whole.end_secs - span);
@@ -155,6 +163,16 @@ mod tests {
         assert_eq!(window.pan(100.0, 10.0).end_secs, 10.0);
         let close = (0..100).fold(window, |window, _| window.zoom(0.5, 4.0, 10.0, 30.0));
         assert!((close.span() - 4.0 / 30.0).abs() < 1e-9);
+    }
+
+    #[test]
+    fn a_shorter_clip_draws_the_window_in() {
+        let window = TimeWindow::whole(6.5);
+        assert_eq!(window.within(2.5), TimeWindow::whole(2.5));
+        assert_eq!(window.within(6.5), window);
+        let near = TimeWindow { start_secs: 4.0, end_secs: 5.0 };
+        assert_eq!(near.within(2.5), TimeWindow { start_secs: 1.5, end_secs: 2.5 });
+        assert_eq!(near.within(10.0), near);
     }
 
     #[test]

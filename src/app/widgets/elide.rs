@@ -25,6 +25,9 @@ pub(crate) fn name_galley(
         let mark = |is_left_away: bool| if is_left_away { "…" } else { "" };
         if left_away != [false; 2] {
             galley = layout(format!("{}{own}{}", mark(left_away[0]), mark(left_away[1])));
+            if own.chars().count() < FEWEST {
+                galley = widened(layout, galley, name, own, width);
+            }
         }
         let mut kept = (own.chars().count() as f32 * width / galley.size().x).floor() as usize;
         // Letters differ in width: a few rounds bring what was estimated within its place.
@@ -34,6 +37,36 @@ pub(crate) fn name_galley(
         }
     }
     (galley, is_cut)
+}
+
+/// A number or a side alone says little: an own part of fewer letters gets as many as there is room for of what stands before it.
+const FEWEST: usize = 6;
+
+/// The own part of a name with as much of what stands before it as fits, at best `galley`, which fits as it is or is cut otherwise.
+fn widened(
+    layout: impl Fn(String) -> Arc<Galley>,
+    galley: Arc<Galley>,
+    name: &str,
+    own: &str,
+    width: f32,
+) -> Arc<Galley> {
+    let Some(at) = name.find(own).filter(|&at| at > 0 && galley.size().x <= width) else { return galley };
+    let before: Vec<char> = name[..at].chars().collect();
+    let behind = if at + own.len() < name.len() { "…" } else { "" };
+    // As many as are surely too many, then fewer until they fit: letters differ in width.
+    let narrowest = 2.5_f32;
+    let mut taken = before.len().min((width / narrowest) as usize);
+    while taken > 0 {
+        let mark = if taken < before.len() { "…" } else { "" };
+        let words: String = before[before.len() - taken..].iter().collect();
+        let wider = layout(format!("{mark}{words}{own}{behind}"));
+        if wider.size().x <= width {
+            return wider;
+        }
+        let share = (width / wider.size().x).min(0.999);
+        taken = (taken as f32 * share).floor() as usize;
+    }
+    galley
 }
 
 /// Draws a [`name_galley`] from the left of `bounds`, at half its height, and gives whether the name had to be cut.
@@ -81,6 +114,18 @@ mod tests {
         let (words, own_width) =
             output.shapes.iter().find_map(|clipped| text(&clipped.shape)).expect("it is written");
         (words, own_width, is_cut)
+    }
+
+    #[test]
+    fn a_number_alone_gets_what_there_is_room_for_of_the_words_before_it() {
+        let shared = Shared { start: "hand_helper_control_bone_number_", end: "" };
+        let name = "hand_helper_control_bone_number_3";
+        for width in [60.0, 100.0, 150.0, 190.0] {
+            let (words, own_width, is_cut) = written(name, shared, width);
+            assert!(is_cut && words.starts_with('…') && words.ends_with("number_3"), "{words}");
+            assert!(own_width <= width && own_width > width - 12.0, "{words} takes {own_width} of {width}");
+        }
+        assert_eq!(written(name, shared, 20.0).0, "…3", "no room for more");
     }
 
     #[test]

@@ -70,7 +70,7 @@ pub(super) const ENTRIES: &[Entry] = &[
     entry(
         A::Curve(C::ChooseSegment),
         "Choose segment here",
-        "Choose the segment between two keys that the playhead is in, or in captured motion the stretch that was shaped there",
+        "Choose the segment between two keys that the playhead is in, or in captured motion the stretch that was made one there",
         Some(alt_shift(Key::Insert)),
         JOINT,
     ),
@@ -139,9 +139,17 @@ pub(super) const ENTRIES: &[Entry] = &[
         |now| now.chosen_keys > 1,
     ),
     entry(
+        A::Curve(C::OneSegment),
+        "Make one segment",
+        "One segment leads from the first to the last chosen key; the keys between give way",
+        Some(alt_shift(Key::M)),
+        |now| now.chosen_keys > 2,
+    )
+    .group(),
+    entry(
         A::Curve(C::Hold),
         "Path: hold",
-        "The chosen segments keep their first key until the next one",
+        "The chosen segments keep their first key until the next one; all keys stay",
         Some(alt_shift(Key::H)),
         JOINT,
     )

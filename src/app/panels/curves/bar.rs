@@ -195,7 +195,7 @@ fn shape_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     });
     let info = || WidgetInfo::labeled(Role::ComboBox, true, "Path between the chosen keys");
     path.response.widget_info(info);
-    let tip = "From key to key; where a key stands at each frame, from the first chosen one to the last";
+    let tip = "From each chosen key to the next; all keys stay";
     path.response.on_hover_text(tip);
     let spacing = ui.menu_button(RichText::new("spacing").size(12.5), |ui| {
         for (spacing, name) in SPACINGS {
@@ -207,7 +207,17 @@ fn shape_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     });
     let info = || WidgetInfo::labeled(Role::ComboBox, true, "Spacing between the chosen keys");
     spacing.response.widget_info(info);
-    spacing.response.on_hover_text("How fast the way is gone; as with the path");
+    spacing
+        .response
+        .on_hover_text("How fast the way from key to key is gone, where there are frames between them");
+    if scope.now.chosen_keys > 2 {
+        let action = Action::Curve(CurveAction::OneSegment);
+        let one = ui.button(RichText::new("one").size(12.5));
+        one.widget_info(|| WidgetInfo::labeled(Role::Button, true, "Make one segment"));
+        if one.on_hover_text(tooltip_text(ui, action)).clicked() {
+            scope.out.push(Command::Do(action));
+        }
+    }
 }
 
 fn segment_ui(ui: &mut Ui, chart: &Chart<'_>, scope: &mut Scope<'_>) {

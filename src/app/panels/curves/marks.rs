@@ -167,14 +167,27 @@ pub(super) fn segment_ui(painter: &Painter, look: &Look, chart: &Chart<'_>, segm
     }
 }
 
-/// Where the joints' snags lie: a bar along the top with the kind's letter, and faint edges down the chart.
+/// The letters of snags on a chart.
+pub(super) struct SnagPlates(Vec<(Pos2, char, SnagState)>);
+
+impl SnagPlates {
+    /// Draws them.
+    pub(super) fn show(&self, painter: &Painter, look: &Look) {
+        for &(at, letter, state) in &self.0 {
+            letter_plate(painter, look, at, 13.0, letter, state);
+        }
+    }
+}
+
+/// Where the joints' snags lie: a bar along the top, and faint edges down the chart. The letters of their kinds, which lie in front of all
+/// else, are given.
 pub(super) fn snag_spans_ui(
     painter: &Painter,
     axis: &TimeAxis,
     plot: Rect,
     joints: &[usize],
     scope: &Scope<'_>,
-) {
+) -> SnagPlates {
     let look = &scope.look;
     let chosen = scope.bench.session.snag;
     let shown: Vec<bool> = scope
@@ -209,12 +222,14 @@ pub(super) fn snag_spans_ui(
     // Snags come by their starts: the middle of a long one may lie behind many that start later.
     plates.sort_by(|a, b| a.0.total_cmp(&b.0));
     let mut last_x = f32::NEG_INFINITY;
+    let mut shown = Vec::new();
     for (x, letter, state, is_chosen) in plates {
         if x > last_x + 14.0 || is_chosen {
-            letter_plate(painter, look, pos2(x, plot.top() + 7.0), 13.0, letter, state);
+            shown.push((pos2(x, plot.top() + 7.0), letter, state));
             last_x = x;
         }
     }
+    SnagPlates(shown)
 }
 
 /// Names of curves lie at least so far apart, one below another.

@@ -121,7 +121,7 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     ));
     marks::bands_ui(&inside, &look, &chart);
     room::room_ui(&inside, &chart, scope);
-    marks::snag_spans_ui(&inside, &axis, plot, &joints, scope);
+    let plates = marks::snag_spans_ui(&inside, &axis, plot, &joints, scope);
     marks::lines_ui(&inside, &look, &chart, session.shows_before, &mut scope.pictures.columns);
     marks::segment_ui(&inside, &look, &chart, session.curves.segment);
     // Pips at the ends of the clip are whole.
@@ -131,6 +131,8 @@ pub(crate) fn curves_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     marks::names_ui(&inside, &look, &chart);
     let now = session.playback.playhead_secs;
     playhead(&painter, &look, &axis, now, area.y_range());
+    // On the playhead, which stands on a snag as soon as it is chosen.
+    plates.show(&inside, &look);
     marks::legend_ui(&painter, &look, &chart, now, session.curves.line);
     hand::gesture_ui(ui, &chart, scope, &hover);
     if let Some((pointer, lines)) = &told {

@@ -89,7 +89,10 @@ fn camera_now(
     [source, result]: [&Arc<Clip>; 2],
 ) -> Camera {
     let session = &scope.bench.session;
-    let Some(fit) = session.fit else {
+    // A retarget, and its undoing, brings another figure, which may be of another size and elsewhere.
+    let is_other = |fitted: &Arc<Clip>| !fitted.has_skeleton_of(result);
+    let has_come = scope.pictures.fitted.as_ref().is_some_and(is_other).then_some(Fit::Again);
+    let Some(fit) = session.fit.or(has_come) else {
         if scope.pictures.grip.is_some() {
             return session.camera;
         }
@@ -99,6 +102,7 @@ fn camera_now(
         }
         return camera;
     };
+    scope.pictures.fitted = Some(Arc::clone(result));
     let stage = scope.pictures.stage(source);
     let mut camera = session.camera;
     let mut follows = session.follows;

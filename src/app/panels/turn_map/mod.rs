@@ -169,7 +169,7 @@ fn rows_ui(
     let row_height = (body.height() / order.len() as f32).clamp(least, ROW_HEIGHTS[1]).floor();
     let seen_before = std::mem::replace(&mut scope.pictures.map_height, body.height());
     ScrollArea::vertical()
-        .id_salt("turn map rows")
+        .id_salt(("turn map rows", scope.bench.document_serial()))
         .auto_shrink(false)
         .scroll_source(ScrollSource {
             drag: egui::containers::scroll_area::DragScroll::Never,
@@ -233,7 +233,8 @@ fn draw_rows(
     draw::heat_ui(ui, axis, clip, rows, scope);
     labels::labels_ui(ui, body, axis, clip, rows, scope);
     draw::choice_ui(&painter, body, axis, rows, scope);
-    marks::marks_ui(ui, axis, rows, scope);
+    // The letters lie on the playhead, which stands on a snag as soon as it is chosen.
     playhead(&painter, &look, axis, scope.bench.session.playback.playhead_secs, body.y_range());
+    marks::marks_ui(ui, axis, rows, scope);
     pointer::pointer_ui(ui, body, axis, clip, rows, scope);
 }
