@@ -134,10 +134,26 @@ pub struct Findings {
     pub searched: Option<Searched>,
     /// The search was stopped by hand: it does not start again by itself.
     pub search_is_stopped: bool,
-    /// The result.
+    /// What is on show: the result, or what came of passes that are only tried.
     pub evaluated: Option<Evaluated>,
+    /// What the document's own passes came to, as far as they have been run.
+    pub settled: Option<Evaluated>,
     /// Remembers the passes that did not change.
     pub evaluator: Arc<Mutex<Evaluator>>,
+}
+
+impl Findings {
+    /// Takes in what passes came to. `own` are those of the document.
+    pub fn take(&mut self, evaluated: Evaluated, own: &[Pass]) {
+        let before = self.evaluated.replace(evaluated.clone());
+        let newest = [Some(evaluated), before].into_iter().flatten().find(|known| known.passes == own);
+        self.settled = newest.or_else(|| self.settled.take());
+    }
+
+    /// What these very passes came to, if that is known.
+    pub fn came_of(&self, passes: &[Pass]) -> Option<&Evaluated> {
+        self.evaluated.iter().chain(&self.settled).find(|known| known.passes == passes)
+    }
 }
 
 /// An open document.
@@ -485,7 +501,8 @@ impl Bench {
     /// The passes with the chosen snag mended as well, while it is open and its mend is looked at before it is accepted.
     fn looked_at(&self) -> Option<Vec<Pass>> {
         let snag = self.chosen_snag().filter(|_| self.session.looks)?;
-        let work = self.work().filter(|work| !work.mends(SnagMark::of(snag)))?;
+        let mark = SnagMark::of(snag);
+        let work = self.work().filter(|work| !work.mends(mark) && !work.leaves(mark))?;
         let edit = Edit::Mend { work: 0, snags: vec![snag.clone()] };
         let alone = Document { sources: Vec::new(), works: vec![work.clone()] };
         edit.apply(&alone).ok().and_then(|mut after| after.works.pop()).map(|work| work.passes)
@@ -494,6 +511,22 @@ impl Bench {
     /// Whether the chosen snag is shown mended though it is open.
     pub fn looks_at_mend(&self) -> bool {
         self.looked_at().is_some()
+    }
+
+    /// What is told of the passes in numbers: of those of the document. Only what is being dragged is told as it would be, since letting go
+    /// makes it so; a mend that is looked at may never be accepted.
+    pub fn told(&self) -> Option<&Evaluated> {
+        let findings = self.findings()?;
+        let is_dragged = self.preview.is_some() || self.trial.is_some();
+        if is_dragged {
+            return findings.evaluated.as_ref();
+        }
+        findings.came_of(&self.work()?.passes).or(findings.settled.as_ref())
+    }
+
+    /// What an export would write: what the document's passes as they are now came to, once they have been run.
+    pub fn to_be_written(&self) -> Option<&Evaluated> {
+        self.findings()?.came_of(&self.work()?.passes)
     }
 
     /// Whether what is shown is not what the document says: a parameter is dragged, or a mend is looked at.

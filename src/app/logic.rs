@@ -80,6 +80,11 @@ impl Window {
                     self.messages.remove(index);
                 }
             }
+            Command::UnfoldMessage(index) => {
+                if let Some(message) = self.messages.get_mut(index) {
+                    message.is_unfolded ^= true;
+                }
+            }
             Command::SetCamera(camera) => self.bench.session.camera = camera,
             Command::FigureIsFitted { camera, follows } => {
                 self.bench.session.camera = camera;
@@ -102,13 +107,10 @@ impl Window {
             Command::CloseDialog => {
                 self.dialog = None;
                 self.after_save = None;
+                self.discarded = None;
             }
             Command::SaveAndGoOn => self.save_and_go_on(),
-            Command::DiscardAndGoOn => {
-                if let Some(Dialog::Unsaved(then)) = self.dialog.take() {
-                    self.go_on(then, ctx);
-                }
-            }
+            Command::DiscardAndGoOn => self.discard_and_go_on(ctx),
             Command::Cancel(slot) => self.stop(slot),
             Command::Settings(command) => self.run_settings(&command, ctx),
             Command::Time(command) => self.run_time(command),
@@ -246,7 +248,7 @@ impl Window {
     pub(super) fn tell(&mut self, message: Message) {
         /// Older ones than this go by themselves.
         const MOST: usize = 8;
-        self.messages.retain(|known| *known != message);
+        self.messages.retain(|known| !known.tells_same(&message));
         self.messages.push(message);
         if self.messages.len() > MOST {
             self.messages.remove(0);

@@ -10,6 +10,7 @@
 //! | `settings` | what is remembered from one run to the next: keys, sizes of areas, hints |
 //! | `help` | what each snag kind and each pass is, with pictures made from tiny clips |
 //! | `jobs`, `file_picker` | work on other threads |
+//! | `places` | which files are written, and the question before one is replaced |
 //! | `view_models` | what panels show, as plain data without egui |
 //! | `panels`, `widgets`, `pictures`, `theme` | how it looks |
 //! | `paint`, `runners`, `screen` | how a window comes onto the display, with a graphics driver or without |
@@ -26,6 +27,7 @@ mod logic;
 pub mod paint;
 mod panels;
 mod pictures;
+mod places;
 pub mod runners;
 mod screen;
 pub mod session;

@@ -7,6 +7,7 @@ use std::time::Duration;
 use egui::{Context, Event, Key, KeyboardShortcut, Ui};
 
 use crate::exchange::{ClipAddress, Source};
+use crate::scene::Revision;
 
 use super::Screen;
 use super::bench::{Bench, Project};
@@ -59,6 +60,8 @@ pub struct Window {
     pub(super) picker: FilePicker,
     /// What waits for the scene to be saved.
     pub(super) after_save: Option<Then>,
+    /// The document that may be lost: it was discarded, and what takes its place is still being asked for.
+    pub(super) discarded: Option<(u64, Revision)>,
     pub(super) next_serial: u64,
     pub(super) is_light: bool,
     pub(super) memory: Memory,
@@ -98,6 +101,7 @@ impl Window {
             commands: Vec::new(),
             picker: FilePicker::default(),
             after_save: None,
+            discarded: None,
             next_serial: 1,
             is_light: false,
             memory: Memory::default(),

@@ -4,6 +4,7 @@ use std::io;
 use std::path::PathBuf;
 
 use crate::blend::BlendError;
+use crate::exchange::advice::with_advice;
 use crate::exchange::{self, WriteError, disk, ron};
 use crate::mend::MendError;
 use crate::proof::ProofError;
@@ -15,13 +16,13 @@ use crate::snag::Cancelled;
 #[derive(Debug, thiserror::Error)]
 pub enum CliError {
     /// A clip file that can't be read.
-    #[error("{}", with_advice(&.0.to_string(), advice_for_open(.0)))]
+    #[error("{}", .0.told())]
     Open(#[from] exchange::OpenError),
     /// A clip that is too large to be searched.
     #[error(transparent)]
     Search(#[from] exchange::SearchTooLarge),
     /// A scene that can't be read.
-    #[error("{}", with_advice(&.0.to_string(), "open it in a text editor, or save it anew from the window"))]
+    #[error("{}", .0.told())]
     Scene(#[from] ron::SceneError),
     /// A result that can't be written.
     #[error("{}", with_advice(&.0.to_string(), "choose another place with -o"))]
@@ -155,24 +156,7 @@ impl From<io::Error> for CliError {
     }
 }
 
-/// A message that says what to do: what it says already, else the advice.
-fn with_advice(message: &str, advice: &str) -> String {
-    if message.contains("; ") { message.to_owned() } else { format!("{message}; {advice}") }
-}
-
 /// A message without the advice it ends with: what helps elsewhere may not help here.
 fn without_advice(message: &str) -> &str {
     message.split_once("; ").map_or(message, |(what, _)| what)
-}
-
-fn advice_for_open(error: &exchange::OpenError) -> &'static str {
-    match error {
-        exchange::OpenError::Disk(disk::DiskError::Io { source, .. }) => match source.kind() {
-            io::ErrorKind::NotFound => "check its name and folder",
-            io::ErrorKind::PermissionDenied => "check who may read it",
-            _ => "check the disk",
-        },
-        exchange::OpenError::Disk(disk::DiskError::Folder(_)) => "name a file in it",
-        _ => "put it right there, or export the clip anew",
-    }
 }

@@ -3,6 +3,7 @@
 //! Each format has a folder that turns bytes into clips and clips into bytes; [`disk`] alone touches files.
 
 mod address;
+pub mod advice;
 pub mod bvh;
 pub mod csv;
 pub mod decimal;

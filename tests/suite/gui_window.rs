@@ -189,6 +189,8 @@ fn an_export_by_dialog_writes_the_corrected_clip_and_tells_what_changed() {
     bench.click("Proof sheet beside it");
     disk::write(&folder.path().join("deckhand_mended-proof.html"), b"mine").unwrap();
     bench.click("Export");
+    bench.0.get_by_label("deckhand_mended.bvh exists. Replace it?");
+    bench.click("Replace");
     let kept = disk::read(&folder.path().join("deckhand_mended-proof.html")).unwrap();
     assert_eq!(kept, b"mine", "no sheet where none is wanted");
     let again = open(&written, &OpenOptions::default()).unwrap();
@@ -214,7 +216,8 @@ fn an_export_onto_the_source_is_refused_in_the_dialog() {
     bench.ask(Command::Do(Action::Export));
     bench.ask(Command::ExportTo { path: path.clone(), has_proof: true });
     assert_eq!(disk::read(&path).unwrap(), before);
-    assert!(bench.0.query_by_label_contains("expected another file than the input").is_some());
+    assert!(bench.0.query_by_label_contains("expected another file than the source").is_some());
+    assert!(bench.0.query_by_label_contains("--force").is_none(), "the window has no such option");
 }
 
 /// A scene keeps sizes in degrees, which may cost their last bit in radians.

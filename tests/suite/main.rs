@@ -95,9 +95,13 @@ mod gui_curves;
 #[cfg(feature = "gui-tests")]
 mod gui_display;
 #[cfg(feature = "gui-tests")]
+mod gui_files;
+#[cfg(feature = "gui-tests")]
 mod gui_fluid;
 #[cfg(feature = "gui-tests")]
 mod gui_harness;
+#[cfg(feature = "gui-tests")]
+mod gui_menus;
 #[cfg(feature = "gui-tests")]
 mod gui_paint;
 #[cfg(feature = "gui-tests")]

@@ -69,6 +69,8 @@ pub enum Command {
     GoToStep(usize),
     /// Take away the message on top.
     Dismiss(usize),
+    /// Show or hide all that a message has to tell.
+    UnfoldMessage(usize),
     /// Set the camera.
     SetCamera(Camera),
     /// The camera has been brought to the figure.

@@ -143,7 +143,7 @@ impl Window {
     fn take_answer(&mut self, answer: Answer, ctx: &Context) {
         match answer {
             Answer::Opened { result, clip } => self.take_opened(result, clip.as_deref()),
-            Answer::NeedsColumns { names, error, .. } if names.len() < 5 => self.tell(Message::error(error)),
+            Answer::NeedsColumns { names, error, .. } if names.len() < 5 => self.open_failed(error),
             Answer::NeedsColumns { path, names, .. } => {
                 self.form = Form::with_columns(&names);
                 self.dialog = Some(Dialog::Columns(path, names));
@@ -165,10 +165,13 @@ impl Window {
             Answer::Evaluated { serial, work, evaluated } => {
                 let chosen = self.chosen_label();
                 let shows_all = self.shows_all_time();
-                if let Some(findings) =
-                    self.project_mut(serial).and_then(|project| project.findings.get_mut(work))
-                {
-                    findings.evaluated = Some(*evaluated);
+                if let Some(project) = self.project_mut(serial) {
+                    let document = Arc::clone(project.document());
+                    if let (Some(own), Some(findings)) =
+                        (document.works.get(work), project.findings.get_mut(work))
+                    {
+                        findings.take(*evaluated, &own.passes);
+                    }
                 }
                 self.follow_joint(chosen);
                 if let Some(clip) = self.bench.result().filter(|_| shows_all) {
@@ -224,18 +227,15 @@ impl Window {
         let sources = match result {
             Ok(sources) => sources,
             Err(error) => {
-                match &self.dialog {
-                    Some(Dialog::Columns(..)) => self.form.error = Some(error),
-                    _ => self.tell(Message::error(error)),
-                }
+                self.open_failed(error);
                 return;
             }
         };
         if let Some(empty) = sources.iter().find(|source| source.clips.is_empty()) {
             let path = empty.path.display();
-            self.tell(Message::error(format!(
+            self.open_failed(format!(
                 "{path}: expected a clip, found a file without animation; nothing was opened"
-            )));
+            ));
             return;
         }
         let wanted = clip.and_then(|text| sources.first().and_then(|source| source.find_clip(text)));
@@ -261,6 +261,14 @@ impl Window {
         }
     }
 
+    /// In the sheet that asked, else as a message.
+    fn open_failed(&mut self, error: String) {
+        match &self.dialog {
+            Some(Dialog::OpenPath | Dialog::Columns(..)) => self.form.fail(error),
+            _ => self.tell(Message::error(error)),
+        }
+    }
+
     pub(in super::super) fn take_serial(&mut self) -> u64 {
         self.next_serial += 1;
         self.next_serial
@@ -269,6 +277,7 @@ impl Window {
     pub(in super::super) fn show_project(&mut self, project: Project, work: usize) {
         self.messages.clear();
         self.dialog = None;
+        self.discarded = None;
         self.bench.heat = None;
         self.bench.curves = None;
         self.bench.more_curves = Vec::new();
@@ -285,15 +294,16 @@ impl Window {
 
     fn tell_notes(&mut self, notes: Vec<(String, Vec<String>)>) {
         for (file, details) in notes {
-            let text = match details.as_slice() {
-                [only] => format!("{file}: {only}"),
-                several => format!(
-                    "{file}: {} things are odd in this file, the first: {}",
-                    several.len(),
-                    several[0]
-                ),
+            let message = match details.as_slice() {
+                [only] => Message::note(format!("{file}: {only}")),
+                several => {
+                    let count = several.len();
+                    let text =
+                        format!("{file}: {count} things are odd in this file, the first: {}", several[0]);
+                    Message { details, ..Message::note(text) }
+                }
             };
-            self.tell(Message { details, ..Message::note(text) });
+            self.tell(message);
         }
     }
 
@@ -301,7 +311,7 @@ impl Window {
         let opened = match result {
             Ok(opened) => *opened,
             Err(error) => {
-                self.tell(Message::error(error));
+                self.open_failed(error);
                 return;
             }
         };
@@ -345,7 +355,7 @@ impl Window {
         if let Err(error) = result {
             self.after_save = None;
             match &self.dialog {
-                Some(Dialog::SavePath) => self.form.error = Some(error),
+                Some(Dialog::SavePath) => self.form.fail(error),
                 _ => self.tell(Message::error(error)),
             }
             return;
@@ -374,7 +384,7 @@ impl Window {
                 let text = format!("Exported {}{more}: {}", exported.path.display(), exported.summary);
                 self.tell(Message { details: exported.notes, ..Message::done(text) });
             }
-            Err(error) if self.dialog == Some(Dialog::Export) => self.form.error = Some(error),
+            Err(error) if self.dialog == Some(Dialog::Export) => self.form.fail(error),
             Err(error) => self.tell(Message::error(error)),
         }
     }
@@ -383,7 +393,7 @@ impl Window {
         let source = match result {
             Ok(source) => source,
             Err(error) => {
-                self.form.error = Some(error);
+                self.form.fail(error);
                 return;
             }
         };
@@ -393,7 +403,7 @@ impl Window {
             works.iter().filter(|work| work.source == index).map(|work| work.clip + 1).max().unwrap_or(0);
         if source.clips.len() < needed {
             let found = source.clips.len();
-            self.form.error = Some(format!(
+            self.form.fail(format!(
                 "{}: expected at least {needed} clips, found {found}; this is another file",
                 source.path.display()
             ));
@@ -427,7 +437,7 @@ impl Window {
         let source = match result {
             Ok(source) => source,
             Err(error) => {
-                self.form.error = Some(error);
+                self.form.fail(error);
                 return;
             }
         };
@@ -442,7 +452,7 @@ impl Window {
         {
             let turned = clip.skeleton.listed().find(|&joint| clip.rotation(joint).is_some());
             let name = turned.map_or("", |joint| clip.skeleton.label(joint));
-            self.form.error = Some(format!(
+            self.form.fail(format!(
                 "{named}: skeleton: expected joints named as in the table, such as `{name}`, found none of them; name another file"
             ));
             return;
@@ -510,12 +520,13 @@ impl Window {
                 self.dialog = Some(Dialog::OpenPath);
                 self.form = Form::with_path(folder);
             }
+            // Nothing takes the place of the document.
+            (Purpose::Open, None) if self.dialog.is_none() => self.discarded = None,
             (_, Some(path)) => {
-                self.form.path = path.display().to_string();
-                self.form.error = None;
+                self.form.name(path.display().to_string());
             }
             (_, None) if picked.is_missing => {
-                self.form.error = Some("this desktop offers no file dialog: type the path above".to_owned());
+                self.form.fail("this desktop offers no file dialog: type the path above");
             }
             _ => {}
         }

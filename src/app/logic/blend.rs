@@ -99,7 +99,7 @@ impl Window {
         let serial = project.serial;
         self.jobs.submit(Slot::Open, move |_| {
             let result = exchange::open(&path, &OpenOptions::default());
-            let result = result.map_err(|error| error.to_string()).and_then(|source| {
+            let result = result.map_err(|error| error.told()).and_then(|source| {
                 if source.clips.is_empty() {
                     let path = path.display();
                     return Err(format!("{path}: expected a clip, found a file without animation"));
@@ -158,7 +158,7 @@ impl Window {
             BlendAnswer::Facts { serial, work } if now == Some(serial) => self.bench.blend = Some(*work),
             BlendAnswer::FileOpened { serial, result } if now == Some(serial) => match result {
                 Ok(source) => self.take_second(&source),
-                Err(error) if self.dialog == Some(Dialog::SecondFile) => self.form.error = Some(error),
+                Err(error) if self.dialog == Some(Dialog::SecondFile) => self.form.fail(error),
                 Err(error) => self.tell(Message::error(error)),
             },
             BlendAnswer::LoopFound { serial, place: (work, pass), result } if now == Some(serial) => {

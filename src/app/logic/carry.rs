@@ -11,6 +11,7 @@ use super::super::panels::{Dialog, Form, Message};
 use super::super::view_models::{BarMark, Lane, carry_facts, with_hold};
 use super::super::window::Window;
 use super::answers::Answer;
+use super::export::not_written;
 use crate::exchange::{self, Guard, OpenOptions, Source, disk, joint_maps};
 use crate::retarget::{Figure, HoldAt, palm, read_map, write_map};
 use crate::scene::{Edit, Others, PassId, PassStep, RetargetPass};
@@ -119,7 +120,7 @@ impl Window {
         let serial = project.serial;
         self.jobs.submit(Slot::Open, move |_| {
             let result = exchange::open(&path, &OpenOptions::default());
-            let result = result.map_err(|error| error.to_string()).and_then(|source| {
+            let result = result.map_err(|error| error.told()).and_then(|source| {
                 if source.skeleton().is_none_or(|skeleton| skeleton.is_empty()) {
                     let path = path.display();
                     return Err(format!("{path}: expected a file with joints, found none"));
@@ -262,7 +263,7 @@ impl Window {
             let guard = Guard { inputs, force: false };
             let fits = source.skeleton().is_some_and(|own| own.len() == result.skeleton.len());
             let written = if fits {
-                exchange::write_onto(&source, &result, &path, &guard).map_err(|error| error.to_string())
+                exchange::write_onto(&source, &result, &path, &guard).map_err(|error| not_written(&error))
             } else {
                 Err("expected a result on the target's skeleton, found another: a later pass or a switch is in the way".to_owned())
             };
@@ -316,7 +317,7 @@ impl Window {
     /// In the sheet that asked, else as a message.
     fn carry_failed(&mut self, error: String) {
         if matches!(self.dialog, Some(Dialog::Carry(_))) {
-            self.form.error = Some(error);
+            self.form.fail(error);
         } else {
             self.tell(Message::error(error));
         }

@@ -124,9 +124,7 @@ impl Window {
         let work = self.bench.session.work;
         let passes = self.bench.work()?.passes.clone();
         let project = self.bench.project.as_ref()?;
-        if let Some(known) = self.bench.findings().and_then(|findings| findings.evaluated.as_ref())
-            && known.passes == passes
-        {
+        if let Some(known) = self.bench.findings().and_then(|findings| findings.came_of(&passes)) {
             return Some(Arc::clone(&known.evaluation.result));
         }
         if passes.is_empty() {

@@ -4,10 +4,11 @@ use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use super::super::jobs::{Slot, Watch};
+use super::super::places::sheet_file;
 use super::super::view_models::{Changes, changes};
 use super::super::window::Window;
 use super::answers::Answer;
-use crate::exchange::{self, Guard, OpenOptions, Source, disk};
+use crate::exchange::{self, Guard, OpenOptions, Source, WriteError, disk};
 use crate::proof::{self, Pair, sheet_html};
 use crate::scene::{ClipWork, Evaluation};
 use crate::snag::Progress as _;
@@ -60,7 +61,7 @@ impl Window {
             let guard = Guard { inputs, force: false };
             let written = match exchange::write(&source, &results, choice, &path, &guard) {
                 Ok(written) => written,
-                Err(error) => return Some(Answer::Exported(Err(error.to_string()))),
+                Err(error) => return Some(Answer::Exported(Err(not_written(&error)))),
             };
             let mut notes: Vec<String> = written.notes.iter().map(ToString::to_string).collect();
             let sheet = has_proof.then(|| prove(&source, &done, choice, &written.path, &guard, watch));
@@ -83,10 +84,15 @@ impl Window {
     }
 }
 
-/// Where the proof sheet of a written file lies: `walk-proof.html` beside `walk.bvh`.
-fn sheet_path(written: &Path) -> PathBuf {
-    let stem = written.file_stem().map_or_else(|| "clip".into(), |stem| stem.to_string_lossy());
-    written.with_file_name(format!("{stem}-proof.html"))
+/// Why a file was not written, in the words of the window.
+pub(super) fn not_written(error: &WriteError) -> String {
+    match error {
+        WriteError::WouldReplaceInput { path } => format!(
+            "{}: expected another file than the source, found the source itself, which is never changed; choose another name",
+            path.display()
+        ),
+        other => other.to_string(),
+    }
 }
 
 /// Reads the written file and measures it against its source.
@@ -116,8 +122,8 @@ fn prove(
     });
     let sheet =
         proof::sheet([source, &after], pairs.collect(), true, watch).map_err(|error| error.to_string())?;
-    let path = sheet_path(written);
-    guard.check(&path).map_err(|error| error.to_string())?;
+    let path = sheet_file(written);
+    guard.check(&path).map_err(|error| not_written(&error))?;
     disk::write(&path, sheet_html(&sheet).as_bytes()).map_err(|error| error.to_string())?;
     Ok(path)
 }

@@ -9,13 +9,14 @@ use super::super::bench::{Findings, SourceState};
 use super::super::file_picker::Purpose;
 use super::super::jobs::Slot;
 use super::super::panels::{Dialog, Form, Message, Then};
+use super::super::places::{is_scene, scene_file};
 use super::super::view_models::counted;
 use super::super::window::Window;
 use super::answers::Answer;
 use crate::demo;
 use crate::exchange::csv::{self, CsvErrorKind, CsvOptions, NamedColumns, TimeUnit};
 use crate::exchange::{self, ClipAddress, OpenError, OpenOptions, Source, disk, ron};
-use crate::scene::{Document, Edit, Library, Loaded, Reading, SourceRef};
+use crate::scene::{Document, Edit, Library, Loaded, Reading, Revision, SourceRef};
 
 /// A scene as read, with its files as far as they were found.
 #[derive(Debug)]
@@ -28,10 +29,6 @@ pub(crate) struct OpenedScene {
     pub sources: Vec<SourceState>,
     /// Joints it names that are no longer there.
     pub lost: Vec<String>,
-}
-
-fn is_scene(path: &Path) -> bool {
-    path.extension().is_some_and(|ending| ending.eq_ignore_ascii_case("ron"))
 }
 
 impl Window {
@@ -60,13 +57,28 @@ impl Window {
 
     /// Does it, or asks about unsaved work first.
     pub(super) fn open_or_ask(&mut self, then: Then) {
-        let is_unsaved = self.bench.project.as_ref().is_some_and(|project| project.history.is_unsaved());
-        if is_unsaved {
+        let project = self.bench.project.as_ref();
+        let is_unsaved = project.is_some_and(|project| project.history.is_unsaved());
+        // Whoever discarded the document to be asked for a path is not asked again once it is typed.
+        let is_discarded = self.discarded.is_some() && self.discarded == self.stand();
+        if is_unsaved && !is_discarded {
             self.show_dialog(Dialog::Unsaved(then));
         } else {
             // No context is at hand here; what needs one is asked for by command.
             self.pending(then);
         }
+    }
+
+    /// Which document it is, and how far it has come.
+    fn stand(&self) -> Option<(u64, Revision)> {
+        self.bench.project.as_ref().map(|project| (project.serial, project.history.revision()))
+    }
+
+    /// Goes on though the document is not saved. Should it be changed before anything takes its place, it is asked about again.
+    pub(super) fn discard_and_go_on(&mut self, ctx: &Context) {
+        let Some(Dialog::Unsaved(then)) = self.dialog.take() else { return };
+        self.discarded = self.stand();
+        self.go_on(then, ctx);
     }
 
     fn pending(&mut self, then: Then) {
@@ -134,10 +146,8 @@ impl Window {
                     Ok(source) => sources.push(hashed(source)),
                     Err(error) => {
                         return Some(match unknown_header(&error) {
-                            Some((path, names)) => {
-                                Answer::NeedsColumns { path, names, error: error.to_string() }
-                            }
-                            None => Answer::Opened { result: Err(error.to_string()), clip },
+                            Some((path, names)) => Answer::NeedsColumns { path, names, error: error.told() },
+                            None => Answer::Opened { result: Err(error.told()), clip },
                         });
                     }
                 }
@@ -151,7 +161,7 @@ impl Window {
         self.jobs.submit(Slot::Open, move |_| {
             let csv = CsvOptions { columns: Some(columns), time_unit: unit, ..CsvOptions::default() };
             let result = exchange::open(&path, &OpenOptions { csv, rest: None });
-            let result = result.map(hashed).map(|source| vec![source]).map_err(|error| error.to_string());
+            let result = result.map(hashed).map(|source| vec![source]).map_err(|error| error.told());
             Some(Answer::Opened { result, clip: None })
         });
     }
@@ -162,7 +172,7 @@ impl Window {
             let scene = &demo::SCENES[0];
             let path = Path::new(scene.clip_file);
             let result = exchange::open_bytes(path, scene.clip_bytes.to_vec(), &OpenOptions::default());
-            let result = result.map(hashed).map(|source| vec![source]).map_err(|error| error.to_string());
+            let result = result.map(hashed).map(|source| vec![source]).map_err(|error| error.told());
             Some(Answer::Opened { result, clip: None })
         });
     }
@@ -189,9 +199,9 @@ impl Window {
     }
 
     pub(super) fn save_to(&mut self, path: PathBuf) {
-        let path = if is_scene(&path) { path } else { path.with_added_extension("ron") };
+        let path = scene_file(path);
         if let Err(error) = self.settle_embedded(&path) {
-            self.form.error = Some(error);
+            self.form.fail(error);
             return;
         }
         let Some(project) = &self.bench.project else { return };
@@ -274,7 +284,7 @@ impl Window {
         let options = OpenOptions::default().or_as_remembered(&known.unwrap_or_default());
         self.jobs.submit(Slot::Relocate, move |_| {
             let result = exchange::open(&path, &options);
-            let result = result.map(hashed).map_err(|error| error.to_string());
+            let result = result.map(hashed).map_err(|error| error.told());
             Some(Answer::Relocated { serial, index, result })
         });
     }
@@ -297,7 +307,7 @@ impl Window {
         let options = OpenOptions::default().or_as_remembered(&reading);
         self.jobs.submit(Slot::Relocate, move |_| {
             let result = exchange::open(&source.path, &options);
-            let result = result.map(hashed).map_err(|error| error.to_string());
+            let result = result.map(hashed).map_err(|error| error.told());
             Some(Answer::Reread { serial, index, result })
         });
     }
@@ -335,7 +345,7 @@ fn absolute(path: &Path) -> String {
 }
 
 fn open_scene(path: PathBuf) -> Result<OpenedScene, String> {
-    let mut scene = ron::read(&path).map_err(|error| error.to_string())?;
+    let mut scene = ron::read(&path).map_err(|error| error.told())?;
     let mut sources = Vec::new();
     for known in &scene.document.sources {
         let options = OpenOptions::default().or_as_remembered(&known.reading);

@@ -123,7 +123,7 @@ impl Window {
                     self.dialog = None;
                 }
             }
-            Err(error) if self.dialog == Some(Dialog::LimitsPath) => self.form.error = Some(error),
+            Err(error) if self.dialog == Some(Dialog::LimitsPath) => self.form.fail(error),
             Err(error) => self.tell(Message::error(error)),
         }
     }

@@ -99,13 +99,14 @@ impl Window {
         let behind = project.behind(work);
         // Another rest pose, or the file found again, is another source clip under the same passes: its own, or that of a clip or skeleton
         // behind.
-        let is_unchanged = |passes: &[Pass]| {
+        let is_current = |known: Option<&Evaluated>, passes: &[Pass]| {
             known.is_some_and(|known| {
                 Arc::ptr_eq(&known.evaluation.source, source)
                     && known.passes == passes
                     && known.behind == behind
             })
         };
+        let is_unchanged = |passes: &[Pass]| is_current(known, passes);
         let is_tried = self.bench.is_trying();
         if !is_tried && self.bench.work().is_some_and(|work| is_unchanged(&work.passes)) {
             return;
@@ -115,7 +116,14 @@ impl Window {
         if is_tried && self.jobs.is_running(Slot::Evaluate) {
             return;
         }
-        let passes = self.bench.passes();
+        let mut passes = self.bench.passes();
+        // A mend is looked at for long, and the document may change meanwhile: its own numbers come first.
+        if self.bench.looks_at_mend()
+            && let Some(own) = self.bench.work().map(|work| &work.passes)
+            && !is_current(findings.settled.as_ref(), own)
+        {
+            passes.clone_from(own);
+        }
         if is_unchanged(&passes) {
             return;
         }

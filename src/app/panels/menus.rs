@@ -1,6 +1,6 @@
 //! The menus: every entry of the command table, with its keys beside it.
 
-use egui::{Button, ComboBox, Ui};
+use egui::{Button, ComboBox, ScrollArea, Ui};
 
 use super::super::bench::file_name;
 use super::super::commands::{Action, Command, Entry, Menu, SettingsCommand, Situation, TABLE};
@@ -10,33 +10,49 @@ use super::super::view_models::counted;
 use super::super::widgets::{Icon, paint_icon};
 use super::Scope;
 
+/// The height of the bar, points.
+const BAR: f32 = 30.0;
+/// The margins of a menu, its gap to the bar and a little below it.
+const AROUND_MENU: f32 = 26.0;
+
 /// The bar on top: menus on the left, what is open on the right.
 pub(crate) fn menus_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let look = scope.look;
     ui.painter().rect_filled(ui.max_rect(), 0.0, look.panel);
+    let bar = ui.max_rect();
     egui::MenuBar::new().ui(ui, |ui| {
         ui.add_space(2.0);
         for menu in Menu::ALL {
             ui.menu_button(menu.title(), |ui| {
                 ui.set_min_width(250.0);
-                for entry in TABLE.iter().filter(|entry| entry.menu == menu) {
-                    if entry.starts_group {
-                        ui.separator();
-                    }
-                    entry_ui(ui, entry, scope.now, &look, scope.out);
-                    if entry.action == Action::OpenDemo {
-                        recent_ui(ui, scope);
-                    }
-                    if entry.action == Action::UsualSize {
-                        let percent = scope.settings.zoom * 100.0;
-                        let words = format!("       Now {percent:.0} %");
-                        ui.label(egui::RichText::new(words).size(12.0).color(look.faint));
-                    }
-                }
+                // What finds no room below the bar is scrolled to: the menu neither covers the bar nor leaves the window.
+                let room = ui.ctx().content_rect().bottom() - bar.top() - BAR - AROUND_MENU;
+                ScrollArea::vertical().id_salt(menu.title()).max_height(room.max(60.0)).show(ui, |ui| {
+                    menu_ui(ui, menu, scope);
+                });
             });
         }
         ui.with_layout(egui::Layout::right_to_left(egui::Align::Center), |ui| open_ui(ui, scope));
     });
+}
+
+/// The entries of a menu.
+fn menu_ui(ui: &mut Ui, menu: Menu, scope: &mut Scope<'_>) {
+    let look = scope.look;
+    for entry in TABLE.iter().filter(|entry| entry.menu == menu) {
+        if entry.starts_group {
+            ui.separator();
+        }
+        entry_ui(ui, entry, scope.now, &look, scope.out);
+        if entry.action == Action::OpenDemo {
+            recent_ui(ui, scope);
+        }
+        if entry.action == Action::UsualSize {
+            let percent = scope.settings.zoom * 100.0;
+            let words = format!("       Now {percent:.0} %");
+            ui.label(egui::RichText::new(words).size(12.0).color(look.faint));
+        }
+    }
 }
 
 /// The files that were open lately.
@@ -87,6 +103,10 @@ pub(super) fn entry_ui(ui: &mut Ui, entry: &Entry, now: &Situation, look: &Look,
             egui::vec2(13.0, 13.0),
         );
         paint_icon(ui.painter(), mark, Icon::Check, look.text);
+    }
+    if response.gained_focus() {
+        // Arrow keys go beyond what is in view.
+        response.scroll_to_me(None);
     }
     if response.on_hover_text(entry.tooltip).clicked() {
         out.push(Command::Do(entry.action));

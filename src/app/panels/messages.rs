@@ -3,6 +3,7 @@
 use egui::{Role, Sense, Ui, WidgetInfo, vec2};
 
 use super::super::commands::{Action, Command};
+use super::super::theme::Look;
 use super::super::widgets::{Icon, action_button, paint_icon};
 use super::Scope;
 
@@ -26,6 +27,8 @@ pub(crate) struct Message {
     pub text: String,
     /// More, shown on demand.
     pub details: Vec<String>,
+    /// Whether that is shown.
+    pub is_unfolded: bool,
     /// An action that helps.
     pub offer: Option<Action>,
 }
@@ -33,7 +36,13 @@ pub(crate) struct Message {
 impl Message {
     /// Something could not be done.
     pub(crate) fn error(text: impl Into<String>) -> Self {
-        Self { level: Level::Error, text: text.into(), details: Vec::new(), offer: None }
+        Self { level: Level::Error, text: text.into(), details: Vec::new(), is_unfolded: false, offer: None }
+    }
+
+    /// Whether both tell the same, unfolded or not.
+    pub(crate) fn tells_same(&self, other: &Self) -> bool {
+        let Self { level, text, details, is_unfolded: _, offer } = self;
+        (*level, text, details, *offer) == (other.level, &other.text, &other.details, other.offer)
     }
 
     /// Something was odd.
@@ -67,21 +76,30 @@ pub(crate) fn messages_ui(ui: &mut Ui, messages: &[Message], scope: &mut Scope<'
                     Level::Done => (Icon::Check, look.text),
                 };
                 paint_icon(ui.painter(), mark, icon, ink);
-                let room = ui.available_width() - if message.offer.is_some() { 210.0 } else { 40.0 };
+                let buttons = [(message.offer.is_some(), 170.0), (!message.details.is_empty(), 90.0)];
+                let buttons: f32 =
+                    buttons.iter().filter(|(is_there, _)| *is_there).map(|(_, room)| room).sum();
+                let room = ui.available_width() - 40.0 - buttons;
                 ui.allocate_ui(vec2(room.max(80.0), 0.0), |ui| {
                     ui.vertical(|ui| {
                         ui.add_space(1.0);
                         let words = egui::RichText::new(&message.text).color(look.text);
-                        let label = ui.add(egui::Label::new(words).wrap().selectable(true));
-                        if !message.details.is_empty() {
-                            label.on_hover_ui(|ui| {
-                                for detail in message.details.iter().take(20) {
-                                    ui.label(detail);
-                                }
-                            });
+                        ui.add(egui::Label::new(words).wrap().selectable(true));
+                        if message.is_unfolded {
+                            details_ui(ui, index, message, &look);
                         }
                     });
                 });
+                if !message.details.is_empty() {
+                    let (verb, tip) = if message.is_unfolded {
+                        ("Show less", "Hide them again")
+                    } else {
+                        ("Show all", "Each of them, in a list")
+                    };
+                    if ui.button(verb).on_hover_text(tip).clicked() {
+                        scope.out.push(Command::UnfoldMessage(index));
+                    }
+                }
                 if let Some(action) = message.offer {
                     action_button(ui, action, scope.now, scope.out);
                 }
@@ -105,4 +123,16 @@ pub(crate) fn messages_ui(ui: &mut Ui, messages: &[Message], scope: &mut Scope<'
         }
         ui.painter().hline(bounds.x_range(), bounds.bottom(), (1.0, look.line));
     }
+}
+
+/// All that a message has to tell, as a list.
+fn details_ui(ui: &mut Ui, index: usize, message: &Message, look: &Look) {
+    let list = egui::ScrollArea::vertical().id_salt(("details", index)).max_height(132.0);
+    list.auto_shrink([false, true]).show(ui, |ui| {
+        ui.spacing_mut().item_spacing.y = 3.0;
+        for (place, detail) in message.details.iter().enumerate() {
+            let words = egui::RichText::new(format!("{}. {detail}", place + 1)).color(look.faint);
+            ui.add(egui::Label::new(words).wrap().selectable(true));
+        }
+    });
 }

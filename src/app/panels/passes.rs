@@ -2,6 +2,7 @@
 
 use egui::{Color32, FontId, Rect, Role, ScrollArea, Sense, Slider, Ui, WidgetInfo, vec2};
 
+use super::super::bench::{Evaluated, file_name};
 use super::super::commands::{Action, Command, Offer, TimeCommand};
 use super::super::theme::{INSET, Look};
 use super::super::view_models::{PassRow, pass_rows};
@@ -14,17 +15,7 @@ use crate::scene::{Edit, PassStep};
 /// The panel.
 pub(crate) fn passes_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
     let look = scope.look;
-    let rows = scope.bench.work().map(|work| {
-        let evaluated = scope.bench.findings().and_then(|findings| findings.evaluated.as_ref());
-        let mut rows = pass_rows(work, evaluated.map(|evaluated| &*evaluated.evaluation));
-        for (row, pass) in rows.iter_mut().zip(&work.passes) {
-            if let PassStep::Blend(blend) = &pass.step {
-                row.title = blend.title_with(&clip_title(scope, blend.other));
-            }
-        }
-        rows
-    });
-    let rows = rows.unwrap_or_default();
+    let rows = rows_of(scope, scope.bench.told());
     strip(ui, "Passes", |ui| add_ui(ui, scope));
     ui.painter().vline(ui.max_rect().left(), ui.max_rect().y_range(), (1.0, look.line));
     if rows.is_empty() {
@@ -34,8 +25,7 @@ pub(crate) fn passes_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         );
         return;
     }
-    let changes = scope.bench.findings().and_then(|findings| findings.evaluated.as_ref());
-    let total = changes.map(|evaluated| evaluated.changes.sentence());
+    let total = scope.bench.told().map(|evaluated| evaluated.changes.sentence());
     let area = ui.available_rect_before_wrap();
     let footer_height = 26.0;
     let body = Rect::from_min_max(area.min, area.max - vec2(0.0, footer_height));
@@ -57,6 +47,26 @@ pub(crate) fn passes_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         one_line(ui.painter(), place, &words, FontId::proportional(12.5), look.text);
         response.on_hover_text(words);
     }
+}
+
+/// The passes of the clip on show with what they came to; other files are called by their names.
+pub(super) fn rows_of(scope: &Scope<'_>, evaluated: Option<&Evaluated>) -> Vec<PassRow> {
+    let Some(work) = scope.bench.work() else { return Vec::new() };
+    let mut rows = pass_rows(work, evaluated.map(|evaluated| &*evaluated.evaluation));
+    for (row, pass) in rows.iter_mut().zip(&work.passes) {
+        match &pass.step {
+            PassStep::Blend(blend) => row.title = blend.title_with(&clip_title(scope, blend.other)),
+            PassStep::Retarget(retarget) => {
+                let project = scope.bench.project.as_ref();
+                let onto = project.and_then(|project| project.document().sources.get(retarget.onto));
+                if let Some(onto) = onto {
+                    row.title = retarget.title_with(&file_name(&onto.path));
+                }
+            }
+            _ => {}
+        }
+    }
+    rows
 }
 
 /// The menu of passes to add. A new one acts on what is chosen on the turn map.

@@ -119,6 +119,11 @@ impl RetargetPass {
         Ok((made.clip, made.report, setting))
     }
 
+    /// The title where it is known what the target's file is called.
+    pub fn title_with(&self, onto: &str) -> String {
+        format!("Retarget onto {onto}")
+    }
+
     /// The clip whose frame is the target's rest.
     fn needs_clip(&self) -> Option<ClipRef> {
         self.rests[1].frame_secs.map(|_| ClipRef { source: self.onto, clip: 0 })
@@ -127,7 +132,7 @@ impl RetargetPass {
 
 impl PassKind for RetargetPass {
     fn title(&self) -> String {
-        format!("Retarget onto file {}", self.onto + 1)
+        self.title_with(&format!("file {}", self.onto + 1))
     }
 
     fn explanation(&self) -> &'static str {

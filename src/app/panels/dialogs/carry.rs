@@ -1,16 +1,17 @@
 //! Files of a retarget: the target, the joint map, and where the result goes.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 
 use egui::{RichText, Ui};
 
 use super::super::super::bench::file_name;
 use super::super::super::commands::{CarryCommand, CarrySheet, Command};
 use super::super::super::file_picker::Purpose;
+use super::super::super::places::{export_files, is_source};
 use super::super::Scope;
 use super::form::Form;
-use super::path::{CLIPS, path_ui};
-use super::sheet::{buttons, error_ui, heading};
+use super::path::{CLIPS, Listed, path_ui};
+use super::sheet::{buttons, buttons_to_write, error_ui, heading};
 
 pub(super) fn carry_sheet(ui: &mut Ui, sheet: CarrySheet, form: &mut Form, scope: &mut Scope<'_>) {
     let (title, words, verb, endings): (&str, &str, &str, &[&str]) = match sheet {
@@ -41,8 +42,26 @@ pub(super) fn carry_sheet(ui: &mut Ui, sheet: CarrySheet, form: &mut Form, scope
     if sheet == CarrySheet::Onto {
         open_files_ui(ui, scope);
     }
-    let mut meant = path_ui(ui, form, endings, 180.0, scope.look.faint);
+    let writes = matches!(sheet, CarrySheet::SaveMap | CarrySheet::Export);
+    let mut meant = path_ui(ui, form, &Listed { endings, height: 180.0, writes }, scope.look.faint);
     error_ui(ui, form, scope);
+    if writes {
+        let project = scope.bench.project.as_ref();
+        let files = |path: &Path| match sheet {
+            _ if is_source(project, path) => Vec::new(),
+            CarrySheet::Export => export_files(path, false),
+            _ => vec![path.to_owned()],
+        };
+        let purpose = Purpose::Carry(sheet);
+        let path = buttons_to_write(ui, (verb, true, purpose), meant, files, form, scope);
+        scope.out.extend(path.map(|path| {
+            Command::Carry(match sheet {
+                CarrySheet::Export => CarryCommand::Export(path),
+                _ => CarryCommand::SaveMap(path),
+            })
+        }));
+        return;
+    }
     let typed = form.path.trim().to_owned();
     let clicked = buttons(ui, verb, !typed.is_empty(), scope, |ui, scope| {
         if ui.button("Browse…").on_hover_text("The desktop's own file dialog").clicked() {
@@ -54,10 +73,8 @@ pub(super) fn carry_sheet(ui: &mut Ui, sheet: CarrySheet, form: &mut Form, scope
     }
     let Some(path) = meant else { return };
     scope.out.push(Command::Carry(match sheet {
-        CarrySheet::Onto => CarryCommand::OpenOnto(path),
         CarrySheet::LoadMap => CarryCommand::LoadMap(path),
-        CarrySheet::SaveMap => CarryCommand::SaveMap(path),
-        CarrySheet::Export => CarryCommand::Export(path),
+        _ => CarryCommand::OpenOnto(path),
     }));
 }
 

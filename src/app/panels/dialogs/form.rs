@@ -21,6 +21,8 @@ pub(crate) struct Form {
     pub path: String,
     /// What was wrong with it.
     pub error: Option<String>,
+    /// A path whose file, or one beside it, is there already, and the question whether it may be replaced.
+    pub(super) replaces: Option<Replaces>,
     /// Whether a proof sheet is written beside an export.
     pub has_proof: bool,
     /// Words looked for in the list of keys.
@@ -45,7 +47,31 @@ pub(crate) struct Form {
     pub(super) has_focus: bool,
 }
 
+/// A question before something is replaced.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub(super) struct Replaces {
+    /// Where to write.
+    pub path: PathBuf,
+    /// The question.
+    pub words: String,
+    /// It has just come up.
+    pub is_new: bool,
+}
+
 impl Form {
+    /// Another path than before: what was said about that one no longer holds.
+    pub(crate) fn name(&mut self, path: impl Into<String>) {
+        self.path = path.into();
+        self.error = None;
+        self.replaces = None;
+    }
+
+    /// Tells what was wrong; the field that it was typed into gets the keyboard again.
+    pub(crate) fn fail(&mut self, error: impl Into<String>) {
+        self.error = Some(error.into());
+        self.has_focus = false;
+    }
+
     /// A new question about a path.
     pub(crate) fn with_path(path: impl Into<String>) -> Self {
         Self { path: path.into(), ..Self::default() }

@@ -94,6 +94,7 @@ pub(crate) fn dialogs_ui(ctx: &egui::Context, dialog: &Dialog, form: &mut Form, 
             Dialog::Shortcuts | Dialog::Help => vec2(720.0, 600.0),
             Dialog::WhatsNew | Dialog::History => vec2(560.0, 460.0),
             Dialog::Unsaved(_) | Dialog::MarkerName(_) => vec2(440.0, 160.0),
+            Dialog::Export => vec2(580.0, 600.0),
             _ => vec2(580.0, 460.0),
         };
         let size = wanted.min(room.max(vec2(200.0, 160.0)));

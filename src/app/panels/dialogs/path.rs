@@ -6,9 +6,10 @@ use egui::{Key, RichText, ScrollArea, TextEdit, Ui};
 
 use super::super::super::commands::{BlendCommand, Command, TimeCommand};
 use super::super::super::file_picker::Purpose;
+use super::super::super::places::{is_own_scene, scene_file};
 use super::super::Scope;
 use super::form::Form;
-use super::sheet::{buttons, error_ui, heading};
+use super::sheet::{buttons, buttons_to_write, error_ui, heading};
 use crate::exchange::disk;
 
 /// How files with clips end.
@@ -30,8 +31,20 @@ pub(super) fn path_sheet(
         Purpose::Second => &CLIPS,
         _ => &ALL,
     };
-    let mut meant = path_ui(ui, form, endings, 230.0, scope.look.faint);
+    let writes = purpose == Purpose::Save;
+    let mut meant = path_ui(ui, form, &Listed { endings, height: 230.0, writes }, scope.look.faint);
     error_ui(ui, form, scope);
+    if writes {
+        let project = scope.bench.project.as_ref();
+        // The document's own scene is what saving is for.
+        let files = |path: &Path| match scene_file(path.to_owned()) {
+            own if is_own_scene(project, &own) => Vec::new(),
+            other => vec![other],
+        };
+        let path = buttons_to_write(ui, (verb, true, purpose), meant, files, form, scope);
+        scope.out.extend(path.map(Command::SaveTo));
+        return;
+    }
     let typed = form.path.trim().to_owned();
     let clicked = buttons(ui, verb, !typed.is_empty(), scope, |ui, scope| {
         if ui.button("Browse…").on_hover_text("The desktop's own file dialog").clicked() {
@@ -43,7 +56,6 @@ pub(super) fn path_sheet(
     }
     if let Some(path) = meant {
         scope.out.push(match purpose {
-            Purpose::Save => Command::SaveTo(path),
             Purpose::Limits => Command::Time(TimeCommand::ReadLimits(path)),
             Purpose::Second => Command::Blend(BlendCommand::OpenFile(path)),
             _ => Command::OpenFiles(vec![path]),
@@ -51,12 +63,21 @@ pub(super) fn path_sheet(
     }
 }
 
+/// The list below a path.
+pub(super) struct Listed<'a> {
+    /// How the names of files in it end.
+    pub endings: &'a [&'a str],
+    /// Its height, points.
+    pub height: f32,
+    /// A file is to be written: a double click names one, and does not yet mean it.
+    pub writes: bool,
+}
+
 /// A path to type, with what lies in its folder below. Gives the path once it is meant.
 pub(super) fn path_ui(
     ui: &mut Ui,
     form: &mut Form,
-    endings: &[&str],
-    list_height: f32,
+    listed: &Listed<'_>,
     look_faint: egui::Color32,
 ) -> Option<PathBuf> {
     let label = ui.label("Path");
@@ -72,6 +93,7 @@ pub(super) fn path_ui(
     }
     if response.changed() {
         form.error = None;
+        form.replaces = None;
     }
     let mut meant = response.lost_focus() && ui.input(|input| input.key_pressed(Key::Enter));
     let typed = PathBuf::from(&form.path);
@@ -86,9 +108,11 @@ pub(super) fn path_ui(
         disk::entries(folder).map_err(|error| error.to_string())
     });
     let mut chosen: Option<(PathBuf, bool)> = None;
-    ScrollArea::vertical().max_height(list_height).min_scrolled_height(list_height).auto_shrink(false).show(
-        ui,
-        |ui| {
+    ScrollArea::vertical()
+        .max_height(listed.height)
+        .min_scrolled_height(listed.height)
+        .auto_shrink(false)
+        .show(ui, |ui| {
             ui.spacing_mut().item_spacing.y = 0.0;
             match listing {
                 Err(error) => {
@@ -97,7 +121,8 @@ pub(super) fn path_ui(
                 Ok(entries) => {
                     let wanted = |entry: &&disk::Entry| {
                         let name = entry.name.to_lowercase();
-                        let fits = entry.is_folder() || endings.iter().any(|ending| name.ends_with(ending));
+                        let fits =
+                            entry.is_folder() || listed.endings.iter().any(|ending| name.ends_with(ending));
                         // A full name shows its neighbours: it is no longer a beginning.
                         fits && (name.starts_with(&beginning) || typed.is_file()) && !name.starts_with('.')
                     };
@@ -118,16 +143,14 @@ pub(super) fn path_ui(
                         }
                         if response.double_clicked() && !entry.is_folder() {
                             chosen = Some((folder.join(&entry.name), false));
-                            meant = true;
+                            meant = !listed.writes;
                         }
                     }
                 }
             }
-        },
-    );
+        });
     if let Some((path, is_folder)) = chosen {
-        form.path = path.display().to_string();
-        form.error = None;
+        form.name(path.display().to_string());
         if is_folder {
             form.path.push(std::path::MAIN_SEPARATOR);
             form.has_focus = false;

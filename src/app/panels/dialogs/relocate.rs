@@ -9,7 +9,7 @@ use super::super::super::commands::Command;
 use super::super::super::file_picker::Purpose;
 use super::super::Scope;
 use super::form::Form;
-use super::path::{CLIPS, path_ui};
+use super::path::{CLIPS, Listed, path_ui};
 use super::sheet::{buttons, error_ui, heading};
 
 pub(super) fn relocate_sheet(ui: &mut Ui, source: usize, form: &mut Form, scope: &mut Scope<'_>) {
@@ -27,7 +27,8 @@ pub(super) fn relocate_sheet(ui: &mut Ui, source: usize, form: &mut Form, scope:
     if let Some(words) = known {
         ui.add(egui::Label::new(RichText::new(words).color(scope.look.faint)).wrap());
     }
-    let mut meant = path_ui(ui, form, &CLIPS, 190.0, scope.look.faint);
+    let mut meant =
+        path_ui(ui, form, &Listed { endings: &CLIPS, height: 190.0, writes: false }, scope.look.faint);
     error_ui(ui, form, scope);
     let typed = form.path.trim().to_owned();
     let clicked = buttons(ui, "Use this file", !typed.is_empty(), scope, |ui, scope| {

@@ -9,7 +9,7 @@ use super::super::super::commands::Command;
 use super::super::super::file_picker::Purpose;
 use super::super::Scope;
 use super::form::Form;
-use super::path::{CLIPS, path_ui};
+use super::path::{CLIPS, Listed, path_ui};
 use super::sheet::{buttons, error_ui, heading};
 
 pub(super) fn skeleton_sheet(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>) {
@@ -24,7 +24,8 @@ pub(super) fn skeleton_sheet(ui: &mut Ui, form: &mut Form, scope: &mut Scope<'_>
         "{words}A clip whose joints bear the names of the table's columns, or a table of joints: joint, parent, offset.x, offset.y, offset.z"
     );
     ui.add(egui::Label::new(RichText::new(words).color(scope.look.faint)).wrap());
-    let mut meant = path_ui(ui, form, &CLIPS, 190.0, scope.look.faint);
+    let mut meant =
+        path_ui(ui, form, &Listed { endings: &CLIPS, height: 190.0, writes: false }, scope.look.faint);
     error_ui(ui, form, scope);
     let typed = form.path.trim().to_owned();
     let clicked = buttons(ui, "Use this file", !typed.is_empty(), scope, |ui, scope| {
