@@ -90,13 +90,19 @@ fn a_walk_is_carried_onto_a_figure_changed_and_exported() {
     // The result goes into a copy of the figure's file.
     sheet.ask(Command::Carry(CarryCommand::Ask(CarrySheet::Export)));
     let path = folder.path().join("carried.glb");
-    sheet.ask(Command::Carry(CarryCommand::Export(path.clone())));
-    assert!(sheet.messages().contains("Exported carried.glb"), "{}", sheet.messages());
+    sheet.0.get_by_label("Proof sheet beside it");
+    sheet.ask(Command::Carry(CarryCommand::Export { path: path.clone(), has_proof: true }));
+    assert!(sheet.messages().contains("Exported carried.glb and carried-proof.html"), "{}", sheet.messages());
+    let name = figure.file_name().expect("a name").to_string_lossy().into_owned();
+    let page = disk::read(&folder.path().join("carried-proof.html")).expect("the sheet is there");
+    assert!(String::from_utf8_lossy(&page).contains(&name));
     let [own, made] = [&figure, &path].map(|path| open(path, &OpenOptions::default()).expect("it opens"));
     assert_eq!(made.clips.len(), own.clips.len() + 1);
 
     sheet.click("Back to the bench");
     sheet.0.get_by_label("Turn map rows");
+    // The list of passes calls the file by its name.
+    sheet.0.get_by_label(&format!("Pass Retarget onto {name}"));
 }
 
 #[test]

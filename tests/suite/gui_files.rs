@@ -282,9 +282,11 @@ fn the_export_sheet_lists_every_pass_and_nothing_stands_on_anything() {
         for title in &titles {
             let beginning = format!("{title}: ");
             let rows = bench.0.query_all_by_label_contains(&beginning);
-            let rows = rows.filter(|row| {
-                row.accesskit_node().label().is_some_and(|words| words.starts_with(&beginning))
-            });
+            let words = |row: &egui_kittest::Node<'_>| {
+                let row = row.accesskit_node();
+                row.value().or_else(|| row.label()).unwrap_or_default()
+            };
+            let rows = rows.filter(|row| words(row).starts_with(&beginning));
             assert!(rows.count() >= 1, "{title} is not listed at {size:?}");
         }
         let rect = |label: &str| bench.0.get_by_label(label).rect();

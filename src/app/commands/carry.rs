@@ -61,5 +61,10 @@ pub enum CarryCommand {
     /// Keep the joint map for these two skeletons.
     KeepMap,
     /// Write the target's file with the motion.
-    Export(PathBuf),
+    Export {
+        /// Where to.
+        path: PathBuf,
+        /// Whether a proof sheet of the retarget is written beside it.
+        has_proof: bool,
+    },
 }

@@ -1,6 +1,6 @@
 //! Carrying a clip to another skeleton: what the sheet asks for, and the work it takes.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use super::super::bench::{SourceState, file_name};
@@ -8,13 +8,15 @@ use super::super::carry_state::{CarryKey, CarryMeasured, CarryWork};
 use super::super::commands::{CarryCommand, CarrySheet};
 use super::super::jobs::Slot;
 use super::super::panels::{Dialog, Form, Message};
+use super::super::places::sheet_file;
 use super::super::view_models::{BarMark, Lane, carry_facts, with_hold};
 use super::super::window::Window;
 use super::answers::Answer;
 use super::export::not_written;
 use crate::exchange::{self, Guard, OpenOptions, Source, disk, joint_maps};
+use crate::proof;
 use crate::retarget::{Figure, HoldAt, palm, read_map, write_map};
-use crate::scene::{Edit, Others, PassId, PassStep, RetargetPass};
+use crate::scene::{Edit, Evaluation, Library, Others, PassId, PassStep, RetargetPass};
 use crate::skeleton::Skeleton;
 
 /// Rows of a joint map by labels.
@@ -78,7 +80,7 @@ impl Window {
             CarryCommand::LoadMap(path) => self.load_map(path),
             CarryCommand::SaveMap(path) => self.save_map(path),
             CarryCommand::KeepMap => self.keep_map(),
-            CarryCommand::Export(path) => self.export_onto(path),
+            CarryCommand::Export { path, has_proof } => self.export_onto(path, has_proof),
         }
     }
 
@@ -99,6 +101,7 @@ impl Window {
         };
         self.dialog = Some(Dialog::Carry(sheet));
         self.form = Form::with_path(path);
+        self.form.has_proof = sheet == CarrySheet::Export;
     }
 
     /// `wolf walk.glb` beside the target's file.
@@ -249,28 +252,45 @@ impl Window {
         });
     }
 
-    fn export_onto(&mut self, path: PathBuf) {
-        let (Some((_, pass)), Some(project)) = (self.bench.carried_pass(), &self.bench.project) else {
+    fn export_onto(&mut self, path: PathBuf, has_proof: bool) {
+        let (Some((id, _)), Some(project), Some(own)) =
+            (self.bench.carried_pass(), &self.bench.project, self.bench.work())
+        else {
             return;
         };
+        // What is written and proved is the document, whatever is being dragged.
+        let Some((_, pass)) = retarget_in(&own.passes, Some(id)) else { return };
         let source = project.sources.get(pass.onto).and_then(SourceState::source).cloned();
         let Some(source) = source else { return };
         let inputs: Vec<PathBuf> =
             project.document().sources.iter().map(|source| source.path.clone()).collect();
+        let names = [inputs.get(own.source), inputs.get(pass.onto)];
+        let names = names.map(|path| path.map_or_else(String::new, |path| file_name(path)));
         let (library, work) = (project.library(), self.bench.session.work);
         self.jobs.submit(Slot::Export, move |_| {
-            let result = library.evaluate(work).map(|evaluation| evaluation.result)?;
+            let evaluation = library.evaluate(work)?;
             let guard = Guard { inputs, force: false };
-            let fits = source.skeleton().is_some_and(|own| own.len() == result.skeleton.len());
+            let fits = source.skeleton().is_some_and(|own| own.len() == evaluation.result.skeleton.len());
             let written = if fits {
-                exchange::write_onto(&source, &result, &path, &guard).map_err(|error| not_written(&error))
+                exchange::write_onto(&source, &evaluation.result, &path, &guard)
+                    .map_err(|error| not_written(&error))
             } else {
                 Err("expected a result on the target's skeleton, found another: a later pass or a switch is in the way".to_owned())
             };
             let written = written.map(|written| {
-                let notes: Vec<String> = written.notes.iter().map(ToString::to_string).collect();
+                let mut notes: Vec<String> = written.notes.iter().map(ToString::to_string).collect();
+                let sheet =
+                    has_proof.then(|| prove(&evaluation, (id, &pass), &library, &names, &written.path, &guard));
+                let beside = match sheet {
+                    Some(Ok(sheet)) => format!(" and {}", file_name(&sheet)),
+                    Some(Err(why)) => {
+                        notes.push(format!("There is no proof sheet: {why}"));
+                        String::new()
+                    }
+                    None => String::new(),
+                };
                 let notes = if notes.is_empty() { String::new() } else { format!(" ({})", notes.join("; ")) };
-                format!("Exported {}{notes}", file_name(&written.path))
+                format!("Exported {}{beside}{notes}", file_name(&written.path))
             });
             Some(Answer::Carry(CarryAnswer::Written(written)))
         });
@@ -364,6 +384,27 @@ impl Window {
             Some(Answer::Carry(CarryAnswer::Measured(serial, Box::new(CarryMeasured { key, made }))))
         });
     }
+}
+
+/// Writes the sheet of a retarget beside the written file: carried once more, and measured. `names` are those of the two files.
+fn prove(
+    evaluation: &Evaluation,
+    (id, pass): (PassId, &RetargetPass),
+    library: &Library,
+    names: &[String; 2],
+    written: &Path,
+    guard: &Guard,
+) -> Result<PathBuf, String> {
+    let place = evaluation.stages.iter().position(|stage| stage.pass == id);
+    let place = place.ok_or("the retarget is switched off")?;
+    let before = place.checked_sub(1).map(|before| &evaluation.stages[before].result);
+    let clip = before.unwrap_or(&evaluation.source);
+    let (_, report, setting) = pass.carried(clip, library, true).map_err(|error| error.to_string())?;
+    let path = sheet_file(written);
+    guard.check(&path).map_err(|error| not_written(&error))?;
+    let page = proof::retarget_sheet(&path, &report, &setting.map, [&setting.source, &setting.target], names);
+    disk::write(&path, page.as_bytes()).map_err(|error| error.to_string())?;
+    Ok(path)
 }
 
 /// Of a map's rows those that say something else than what is found, by labels.

@@ -27,9 +27,14 @@ pub(crate) fn menus_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
                 ui.set_min_width(250.0);
                 // What finds no room below the bar is scrolled to: the menu neither covers the bar nor leaves the window.
                 let room = ui.ctx().content_rect().bottom() - bar.top() - BAR - AROUND_MENU;
-                ScrollArea::vertical().id_salt(menu.title()).max_height(room.max(60.0)).show(ui, |ui| {
-                    menu_ui(ui, menu, scope);
-                });
+                let room = room.max(60.0);
+                ui.set_max_height(room);
+                let mut list = ScrollArea::vertical().id_salt(menu.title()).max_height(room);
+                if ui.is_sizing_pass() {
+                    // It has just been opened, and begins at its beginning.
+                    list = list.vertical_scroll_offset(0.0);
+                }
+                list.show(ui, |ui| menu_ui(ui, menu, scope));
             });
         }
         ui.with_layout(egui::Layout::right_to_left(egui::Align::Center), |ui| open_ui(ui, scope));

@@ -44,19 +44,27 @@ pub(super) fn carry_sheet(ui: &mut Ui, sheet: CarrySheet, form: &mut Form, scope
     }
     let writes = matches!(sheet, CarrySheet::SaveMap | CarrySheet::Export);
     let mut meant = path_ui(ui, form, &Listed { endings, height: 180.0, writes }, scope.look.faint);
+    if sheet == CarrySheet::Export {
+        let tip = "A page with the joint map, what was held and missed, and how far arms and legs point from where the source's do";
+        let sheet = ui.checkbox(&mut form.has_proof, "Proof sheet beside it").on_hover_text(tip);
+        if sheet.changed() {
+            form.replaces = None;
+        }
+    }
     error_ui(ui, form, scope);
+    let has_proof = form.has_proof;
     if writes {
         let project = scope.bench.project.as_ref();
         let files = |path: &Path| match sheet {
             _ if is_source(project, path) => Vec::new(),
-            CarrySheet::Export => export_files(path, false),
+            CarrySheet::Export => export_files(path, has_proof),
             _ => vec![path.to_owned()],
         };
         let purpose = Purpose::Carry(sheet);
         let path = buttons_to_write(ui, (verb, true, purpose), meant, files, form, scope);
         scope.out.extend(path.map(|path| {
             Command::Carry(match sheet {
-                CarrySheet::Export => CarryCommand::Export(path),
+                CarrySheet::Export => CarryCommand::Export { path, has_proof },
                 _ => CarryCommand::SaveMap(path),
             })
         }));
