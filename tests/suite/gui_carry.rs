@@ -5,7 +5,7 @@ use std::path::{Path, PathBuf};
 use egui_kittest::kittest::Queryable as _;
 use turnwright::app::Start;
 use turnwright::app::commands::{Action, CarryCommand, CarrySheet, Command};
-use turnwright::app::view_models::CarryState;
+use turnwright::app::view_models::{CarryState, Stage};
 use turnwright::exchange::{ClipAddress, OpenOptions, disk, open};
 use turnwright::retarget::{HoldAt, KeptLimits};
 use turnwright::scene::{Edit, PassId, RetargetPass};
@@ -103,6 +103,73 @@ fn a_walk_is_carried_onto_a_figure_changed_and_exported() {
     sheet.0.get_by_label("Turn map rows");
     // The list of passes calls the file by its name.
     sheet.0.get_by_label(&format!("Pass Retarget onto {name}"));
+}
+
+/// How much of the skeleton view's height the result takes at a time, and that all of it lies inside.
+#[track_caller]
+fn height_in_view(bench: &mut Bench<'_>, share_of_time: f64) -> f64 {
+    let secs = bench.window().bench().result().expect("a result").duration_secs * share_of_time;
+    bench.ask(Command::Scrub(secs));
+    let bounds = bench.0.get_by_label("Skeleton view").rect();
+    let own = bench.window().bench();
+    let (clip, session) = (own.result().expect("a result"), &own.session);
+    let secs = session.playback.playhead_secs;
+    let mut camera = session.camera;
+    if session.follows {
+        camera.target += Stage::new(clip).gone(clip, secs);
+    }
+    let view = camera.view(bounds.width() as usize, bounds.height() as usize);
+    let world = clip.world_at(secs);
+    let pixels: Vec<_> = clip
+        .skeleton
+        .listed()
+        .map(|joint| view.project(world[joint].position()).expect("it lies before the camera").pixel)
+        .collect();
+    for pixel in &pixels {
+        let is_inside = (0.0..f64::from(bounds.width())).contains(&pixel.x)
+            && (0.0..f64::from(bounds.height())).contains(&pixel.y);
+        assert!(is_inside, "{pixel} at {secs} s, in {bounds}");
+    }
+    let ys = || pixels.iter().map(|pixel| pixel.y);
+    (ys().fold(f64::MIN, f64::max) - ys().fold(f64::MAX, f64::min)) / f64::from(bounds.height())
+}
+
+#[track_caller]
+fn check_is_in_view(bench: &mut Bench<'_>) {
+    for share in [0.0, 0.5, 1.0] {
+        let height = height_in_view(bench, share);
+        assert!(height > 0.3, "the figure takes {height} of the view's height");
+    }
+}
+
+/// The walk is in centimetres, the figure in metres, and above its hips stands a joint that never moves.
+#[test]
+fn the_skeleton_view_is_fitted_to_the_carried_figure_and_follows_it() {
+    let Some((walk, figure)) = files() else { return };
+    let folder = tempfile::tempdir().expect("a folder");
+    let scene = folder.path().join("carried.ron");
+    let mut bench = open_clip(&walk, [1440.0, 900.0]);
+    check_is_in_view(&mut bench);
+    bench.ask(Command::Carry(CarryCommand::OpenOnto(figure.clone())));
+    bench.click("Back to the bench");
+    assert!(bench.window().bench().session.follows, "it walks");
+    let result = bench.window().bench().result().expect("a result").clone();
+    let root = Stage::new(&result).root.expect("a root");
+    assert_eq!(result.skeleton.label(root), "hips");
+    check_is_in_view(&mut bench);
+    bench.ask(Command::SaveTo(scene.clone()));
+    bench.undo();
+    assert!(bench.passes().is_empty());
+    check_is_in_view(&mut bench);
+    // As it is opened again.
+    check_is_in_view(&mut open_clip(&scene, [1440.0, 900.0]));
+    // The other way round.
+    let address = ClipAddress { path: figure, clip: Some("0".to_owned()) };
+    let mut bench = Bench::of_size(Start::Files(vec![address]), [1440.0, 900.0]);
+    check_is_in_view(&mut bench);
+    bench.ask(Command::Carry(CarryCommand::OpenOnto(walk)));
+    bench.click("Back to the bench");
+    check_is_in_view(&mut bench);
 }
 
 #[test]

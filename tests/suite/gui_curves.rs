@@ -778,15 +778,21 @@ fn a_stretch_of_captured_keys_gets_a_path_and_a_spacing() {
     desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::Q);
     assert_eq!(desk.steps(), 0);
     let told = desk.window().messages().collect::<Vec<_>>().join(" ");
-    assert!(told.contains("choose a stretch of keys first"), "{told}");
+    assert!(told.contains("choose a stretch of keys") && told.contains("make one segment"), "{told}");
 
     let keys = keys_between(&desk, "Trunk", 0.5, 1.5);
     assert_eq!(keys.len(), 31);
     desk.ask(Command::Curve(CurveCommand::Choose(keys)));
-    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::S);
+    // A pace would not be seen between two frames, a turn would spin.
+    for key in [Key::U, Key::Period] {
+        desk.press(Modifiers::ALT | Modifiers::SHIFT, key);
+        assert_eq!(desk.steps(), 0);
+    }
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::M);
     assert_eq!((desk.steps(), desk.times("Trunk").len()), (1, 61 - 29));
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::S);
     desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::U);
-    assert_eq!((desk.steps(), desk.passes().len()), (2, 1));
+    assert_eq!((desk.steps(), desk.passes().len()), (3, 1));
     // The bar has gone over to the segment that is left, whose handles can be dragged.
     assert_eq!(
         desk.window().bench().session.curves.segment.map(|(joint, _)| joint),
@@ -803,9 +809,57 @@ fn a_stretch_of_captured_keys_gets_a_path_and_a_spacing() {
     for secs in [0.0, 0.3, 0.5, 1.5, 1.8] {
         assert!(after.at(secs).turn_to(before.at(secs)) < 1e-9, "beside the stretch at {secs}");
     }
-    desk.press(Modifiers::COMMAND, Key::Z);
-    desk.press(Modifiers::COMMAND, Key::Z);
+    for _ in 0..3 {
+        desk.press(Modifiers::COMMAND, Key::Z);
+    }
     assert!(desk.passes().is_empty());
+}
+
+#[test]
+fn a_path_on_chosen_keys_keeps_them_all() {
+    let mut desk = Desk::new();
+    for name in ["Trunk", ARM] {
+        desk.choose(name);
+        let before = desk.track(name);
+        let count = before.keys.len();
+        desk.act(CurveAction::ChooseAll);
+        let steps = desk.steps();
+        for (key, kind) in [(Key::H, PathKind::Hold), (Key::Q, PathKind::Squad)] {
+            desk.press(Modifiers::ALT | Modifiers::SHIFT, key);
+            let after = desk.track(name);
+            assert_eq!((after.keys.len(), desk.chosen()), (count, count), "{name}, {kind:?}");
+            for place in 0..count {
+                let secs = before.times.at(place);
+                assert!(after.at(secs).turn_to(before.at(secs)) < 1e-9, "{name} at {secs}");
+                assert!(place + 1 == count || after.kind_of(place, None) == kind, "{name}, segment {place}");
+            }
+        }
+        assert_eq!(desk.steps(), steps + 2, "one step each");
+    }
+}
+
+#[test]
+fn keys_that_are_chosen_let_go_of_the_segment_before() {
+    let mut desk = Desk::new();
+    desk.choose("Trunk");
+    let count = desk.times("Trunk").len();
+    desk.act(CurveAction::ChooseAll);
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::M);
+    assert_eq!(desk.times("Trunk").len(), 2);
+    assert!(desk.window().bench().session.curves.segment.is_some(), "the one that is left");
+    desk.press(Modifiers::COMMAND, Key::Z);
+    desk.press(Modifiers::COMMAND, Key::A);
+    assert_eq!((desk.chosen(), desk.window().bench().session.curves.segment), (count, None));
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::Q);
+    assert_eq!(desk.messages(), "");
+    let track = desk.track("Trunk");
+    assert!((0..count - 1).all(|segment| track.kind_of(segment, None) == PathKind::Squad));
+    // And a segment lets go of keys.
+    desk.choose(ARM);
+    desk.act(CurveAction::ChooseAll);
+    desk.ask(Command::Scrub(0.7));
+    desk.act(CurveAction::ChooseSegment);
+    assert_eq!(desk.chosen(), 0);
 }
 
 #[test]
@@ -818,6 +872,11 @@ fn a_stretch_of_rows_is_shaped_on_in_its_own_pass() {
     let (from, to) = (grid.time(100), grid.time(140));
     let keys = keys_between(&desk, "LeftArm", from, to);
     desk.ask(Command::Curve(CurveCommand::Choose(keys)));
+    // Between two rows nothing is kept.
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::Q);
+    assert_eq!(desk.steps(), 0);
+    desk.bench.0.get_by_label("Make one segment").click();
+    desk.run();
     desk.bench.0.get_by_label("Path between the chosen keys").click();
     desk.run();
     desk.bench.0.get_by_label("slerp").click();
@@ -836,7 +895,7 @@ fn a_stretch_of_rows_is_shaped_on_in_its_own_pass() {
     check(&desk, Spacing::EaseIn);
     desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::O);
     check(&desk, Spacing::EaseOut);
-    assert_eq!((desk.steps(), desk.passes().len()), (3, 1), "{:?}", desk.passes());
+    assert_eq!((desk.steps(), desk.passes().len()), (4, 1), "{:?}", desk.passes());
     // Turns are counted on from those that the stretch has.
     for _ in 0..2 {
         desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::Period);
@@ -883,7 +942,7 @@ fn handles_shape_the_spacing_of_a_stretch_of_rows() {
         desk.bench.0.query_by_label_contains(name).is_none(),
         "captured motion has no spacing of its own"
     );
-    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::S);
+    desk.press(Modifiers::ALT | Modifiers::SHIFT, Key::M);
     let steps = desk.steps();
     let handle = desk.bench.0.get_by_label_contains(name).rect().center();
     let check = |desk: &Desk<'_>, shown: Option<&turnwright::app::view_models::LocalCurves>, points| {

@@ -183,10 +183,10 @@ fn a_captured_dance_is_cleaned_up_from_opening_to_export() {
     // A degree of one plane angle turns by a degree at most.
     assert!((1.0..5.1).contains(&push.turn.length().to_degrees()), "{push:?}");
 
-    // Choose a stretch of its keys and let a smooth path lead over it, coming to a standstill.
+    // Choose a stretch of its keys, make it one segment and let a smooth path lead over it, coming to a standstill.
     let forward = ["Right"; 16];
     session.press(&[&["alt+bracketleft"][..], &forward, &["alt+bracketright"]].concat());
-    session.press(&["ctrl+alt+a", "alt+shift+q", "alt+shift+o"]);
+    session.press(&["ctrl+alt+a", "alt+shift+m", "alt+shift+q", "alt+shift+o"]);
     let shaped = session.saved();
     session.keep("6 another path");
     assert_eq!(kinds(&shaped), ["mend", "push", "keys"]);
@@ -199,16 +199,16 @@ fn a_captured_dance_is_cleaned_up_from_opening_to_export() {
     };
     assert_eq!((gone.len(), starts.len()), (15, 1));
 
-    // Undo spacing, path and push, redo them. Redone, the document is again the one that was saved, and the title says so.
-    session.press(&["ctrl+z"; 3]);
+    // Undo spacing, path, segment and push, redo them. Redone, the document is again the one that was saved, and the title says so.
+    session.press(&["ctrl+z"; 4]);
     desk.wait("unsaved work", || session.is_unsaved().then_some(()));
     session.keep("7 undone");
-    session.press(&["ctrl+shift+z"; 3]);
+    session.press(&["ctrl+shift+z"; 4]);
     desk.wait("nothing unsaved", || (!session.is_unsaved()).then_some(()));
     // The first of five keys that pushed made a step, the others went on with it.
-    session.press(&["ctrl+z"; 3]);
+    session.press(&["ctrl+z"; 4]);
     assert_eq!(session.saved(), mended);
-    session.press(&["ctrl+shift+z"; 3]);
+    session.press(&["ctrl+shift+z"; 4]);
     assert_eq!(session.saved(), shaped);
     session.keep("8 redone and saved");
 

@@ -7,7 +7,7 @@ use egui::{Key, Modifiers, Pos2};
 use egui_kittest::kittest::Queryable as _;
 use turnwright::app::Start;
 use turnwright::app::commands::{Action, BlendCommand, Command};
-use turnwright::app::view_models::BlendKind;
+use turnwright::app::view_models::{BlendKind, TimeWindow};
 use turnwright::blend::{JoinPlace, RootFrom};
 use turnwright::exchange::ClipAddress;
 use turnwright::scene::{BlendForm, BlendPass, ClipRef, Edit, LoopPass, PassStep};
@@ -58,6 +58,29 @@ fn clip_joint(bench: &Bench<'_>, label: &str) -> usize {
 }
 
 const RUN: ClipRef = ClipRef { source: 0, clip: 2 };
+
+#[test]
+fn what_undo_makes_shorter_is_not_drawn_beyond_its_end() {
+    let Some(mut bench) = fox() else { return };
+    let walk = bench.length();
+    bench.ask(Command::Blend(BlendCommand::Add(RUN, BlendKind::Join)));
+    let joined = bench.length();
+    let session = |bench: &Bench<'_>| bench.window().bench().session.clone();
+    assert!(joined > walk + 0.2);
+    assert_eq!(session(&bench).window, TimeWindow::whole(joined), "all of it is shown");
+    bench.ask(Command::Scrub(joined));
+    bench.undo();
+    assert_eq!(bench.length(), walk);
+    assert_eq!(session(&bench).window, TimeWindow::whole(walk));
+    assert_eq!(session(&bench).playback.playhead_secs, walk);
+    // What was looked at more closely stays as large, and comes back to where there is something.
+    bench.press(Modifiers::COMMAND | Modifiers::SHIFT, Key::Z);
+    assert_eq!(session(&bench).window, TimeWindow::whole(joined));
+    bench.ask(Command::ShowTime(TimeWindow { start_secs: joined - 0.2, end_secs: joined }));
+    bench.undo();
+    let window = session(&bench).window;
+    assert!((window.span() - 0.2).abs() < 1e-9 && (window.end_secs - walk).abs() < 1e-9, "{window:?}");
+}
 
 #[test]
 fn a_clip_is_joined_from_the_menu_and_its_place_is_dragged_and_clicked() {

@@ -4,7 +4,7 @@ use std::path::{Path, PathBuf};
 
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use turnwright::app::commands::{Action, Command};
-use turnwright::app::view_models::SnagState;
+use turnwright::app::view_models::{CurveView, SnagState, joint_numbers};
 use turnwright::app::{Screen as _, Start, Window};
 use turnwright::exchange::{ClipAddress, OpenOptions, disk, open};
 use turnwright::scene::Pass;
@@ -303,6 +303,138 @@ fn a_file_that_cannot_be_read_is_told_with_its_name_and_place() {
     bench.0.get_by_label("Open…");
     bench.click("Dismiss message");
     assert_eq!(bench.messages(), "");
+}
+
+#[test]
+fn a_new_document_has_lists_at_their_tops_and_no_messages_of_the_one_before() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = demo_file(folder.path());
+    let copy = folder.path().join("second.bvh");
+    std::fs::copy(&path, &copy).unwrap();
+    let start = Start::Files(vec![ClipAddress { path, clip: None }]);
+    let mut bench = Bench::of_size(start, [1000.0, 560.0]);
+    bench.ask(Command::Do(Action::MendSafe));
+    bench.ask(Command::SaveTo(folder.path().join("first.ron")));
+    assert!(bench.messages().contains("first.ron"), "{}", bench.messages());
+    let clip = bench.window().bench().source().unwrap().clone();
+    let (first, last) = (clip.skeleton.listed().next().unwrap(), clip.skeleton.listed().last().unwrap());
+    let row = format!("Map row {}", clip.skeleton.label(first));
+    bench.ask(Command::ChooseJoint(Some(last)));
+    assert!(bench.0.query_by_label(&row).is_none(), "the first row has gone out of view");
+    bench.ask(Command::OpenFiles(vec![copy]));
+    assert!(bench.window().title().contains("second.bvh"), "{}", bench.window().title());
+    let map = bench.0.get_by_label("Turn map rows").rect();
+    let row = bench.0.get_by_label(&row).rect();
+    assert!((row.top() - map.top()).abs() < 2.0, "{row} in {map}");
+    assert!(!bench.messages().contains("first.ron"), "{}", bench.messages());
+}
+
+#[test]
+fn a_clip_that_a_file_has_not_is_told() {
+    let folder = tempfile::tempdir().unwrap();
+    let address = ClipAddress { path: demo_file(folder.path()), clip: Some("Nowhere".to_owned()) };
+    let bench = Bench::open(Start::Files(vec![address]));
+    assert!(bench.messages().contains("found `Nowhere`"), "{}", bench.messages());
+}
+
+#[test]
+fn the_letter_of_the_chosen_snag_lies_on_the_playhead() {
+    let mut bench = Bench::open(Start::Demo);
+    let index = bench.window().bench().snags().iter().position(|snag| snag.kind == SnagKind::BrokenValue);
+    bench.ask(Command::ChooseSnag(index.expect("a snag of one frame")));
+    let own = bench.window().bench();
+    let snag = own.chosen_snag().unwrap().clone();
+    assert_eq!(snag.first_frame, snag.last_frame);
+    let (window, name) = (own.session.window, own.source().unwrap().skeleton.label(snag.joint).to_owned());
+    let rows = bench.0.get_by_label("Turn map rows").rect();
+    let row = bench.0.get_by_label(&format!("Map row {name}")).rect();
+    let chart = bench.0.get_by_label("Rotation curves chart").rect();
+    let x = rows.left() + rows.width() * window.share(snag.first_secs) as f32;
+    // The plates with their letters: in the row's middle, and at the top of the chart.
+    let plates = [egui::pos2(x, row.center().y), egui::pos2(x, chart.top() + 15.0)];
+    let mut picture = |secs: f64| {
+        bench.ask(Command::Scrub(secs));
+        bench.0.hover_at(egui::pos2(1.0, 1.0));
+        bench.run();
+        let image = bench.0.render().unwrap();
+        let scale = image.width() as f32 / 1440.0;
+        let around = |at: egui::Pos2| {
+            let (x, y) = (((at.x - 5.0) * scale) as u32, ((at.y - 5.0) * scale) as u32);
+            let side = (10.0 * scale) as u32;
+            (0..side * side)
+                .map(|place| *image.get_pixel(x + place % side, y + place / side))
+                .collect::<Vec<_>>()
+        };
+        plates.map(around)
+    };
+    let (on, beside) = (picture(snag.first_secs), picture(snag.first_secs + 0.2));
+    for (place, (on, beside)) in on.into_iter().zip(beside).enumerate() {
+        assert!(on.iter().any(|pixel| *pixel != on[0]), "there is a letter in plate {place}");
+        assert!(on == beside, "the playhead crosses plate {place}");
+    }
+}
+
+#[test]
+fn a_snag_of_stored_numbers_alone_shows_them_and_says_so() {
+    let mut bench = Bench::open(Start::Demo);
+    let choose = |bench: &mut Bench<'_>, kind: SnagKind| {
+        let index = bench.window().bench().snags().iter().position(|snag| snag.kind == kind);
+        bench.ask(Command::ChooseSnag(index.expect("a snag of that kind")));
+        bench.window().bench().session.curve_view
+    };
+    let said =
+        |bench: &Bench<'_>| bench.0.query_by_label_contains("The curves show the file's own").is_some();
+    assert_eq!(choose(&mut bench, SnagKind::Wrap), CurveView::FileNumbers);
+    assert!(said(&bench));
+    // The step of a whole turn is in the curves on show.
+    let set = bench.window().bench().curve_sets()[0].clone();
+    let height = |values: &[f32]| {
+        values.iter().copied().fold(f32::MIN, f32::max) - values.iter().copied().fold(f32::MAX, f32::min)
+    };
+    assert!(set.lines.iter().any(|line| height(line.shown().values()) > 300.0));
+    assert_eq!(choose(&mut bench, SnagKind::MirroredAngles), CurveView::FileNumbers);
+    assert_eq!(choose(&mut bench, SnagKind::Spike), CurveView::PlaneAngles, "as it was before");
+    assert!(!said(&bench));
+    choose(&mut bench, SnagKind::Wrap);
+    bench.ask(Command::Do(Action::SwingTwist));
+    assert!(!said(&bench));
+    assert_eq!(choose(&mut bench, SnagKind::Spike), CurveView::SwingTwist, "what was asked for stays");
+}
+
+#[test]
+fn what_is_no_number_does_not_differ_from_itself() {
+    let mut bench = Bench::open(Start::Demo);
+    let clip = bench.window().bench().source().unwrap().clone();
+    let neck = clip.skeleton.find("Neck").expect("a neck");
+    let secs = clip.grid.time(40);
+    let numbers = joint_numbers(&clip, &clip, neck, secs);
+    assert!(numbers.after.stored.iter().any(|(_, value)| value.is_nan()), "{numbers:?}");
+    assert!(!numbers.differs());
+    bench.ask(Command::ChooseJoint(Some(neck)));
+    bench.ask(Command::Scrub(secs));
+    assert!(bench.0.query_by_label_contains("changed by").is_none());
+    bench.ask(Command::Do(Action::MendSafe));
+    let result = bench.window().bench().result().unwrap().clone();
+    assert!(joint_numbers(&clip, &result, neck, secs).differs());
+    bench.0.get_by_label_contains("changed by");
+}
+
+#[test]
+fn stored_numbers_are_those_of_the_frame_that_is_told() {
+    let bench = Bench::open(Start::Demo);
+    let clip = bench.window().bench().source().unwrap().clone();
+    let joint = clip.skeleton.find("LeftForearm").expect("an arm");
+    let step = 1.0 / clip.grid.rate;
+    let stored = |secs: f64| joint_numbers(&clip, &clip, joint, secs).after.stored;
+    for frame in [57, 142] {
+        let at = clip.grid.time(frame);
+        assert_ne!(stored(at), stored(clip.grid.time(frame - 1)));
+        for off in [-0.4, -0.1, 0.0, 0.1, 0.4] {
+            let secs = at + off * step;
+            assert_eq!(clip.grid.frame(secs), frame);
+            assert_eq!(stored(secs), stored(at), "{off} frames off frame {frame}");
+        }
+    }
 }
 
 #[test]
