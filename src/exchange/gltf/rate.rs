@@ -11,6 +11,8 @@ const MAX_FRAMES: f64 = 3_456_000.0;
 
 /// A rate whose frames hold no such share of the keys is not that of the clip.
 const MOST_KEYS: f64 = 0.9;
+/// The same of a rate that files are made at: after a pause all keys may lie beside its frames.
+const MOST_KEYS_OF_USUAL: f64 = 0.6;
 /// And one that holds this share is, if it is the lowest.
 const NEARLY_ALL_KEYS: f64 = 0.98;
 
@@ -32,7 +34,8 @@ pub(super) fn frame_rate(tracks: &[&[f64]], duration_secs: f64) -> f64 {
     let (step, blur) = refined(median, blur, tracks).unwrap_or((median, blur));
     let rate = usual(step, blur).unwrap_or(1.0 / step);
     let slack = ROUNDINGS * duration_secs.abs() * f64::from(f32::EPSILON);
-    let rate = if on_grid(tracks, rate, slack) < MOST_KEYS {
+    let is_usual = rate >= USUAL_RATES[0] - 0.1;
+    let rate = if on_grid(tracks, rate, slack) < if is_usual { MOST_KEYS_OF_USUAL } else { MOST_KEYS } {
         // Few keys, set by hand or left over: frames lie closer than keys.
         finer(tracks, rate, slack).unwrap_or(rate)
     } else {
@@ -118,6 +121,10 @@ mod tests {
             let found = frame_rate(&[&times], *times.last().unwrap());
             assert!((found - rate).abs() < 1e-9, "{rate}: found {found}");
         }
+        // A pause of 0.2 s between frames at 24 a second.
+        let mut paused: Vec<f64> = (0..17).map(|frame| f64::from(frame) / 24.0).collect();
+        paused.extend((0..8).map(|frame| 16.0 / 24.0 + 0.2 + f64::from(frame) / 24.0));
+        assert_eq!(frame_rate(&[&paused], paused[24]), 24.0);
         // At even steps nothing says that there are frames between, and times on no frame have their middle step.
         let even = keys(24.0, &[0, 10, 20, 30]);
         assert!((frame_rate(&[&even], 1.25) - 2.4).abs() < 1e-6);
