@@ -26,7 +26,8 @@ pub(crate) fn name_galley(
         if left_away != [false; 2] {
             galley = layout(format!("{}{own}{}", mark(left_away[0]), mark(left_away[1])));
             if own.chars().count() < FEWEST {
-                galley = widened(layout, galley, name, own, width);
+                let at = if left_away[0] { shared.start.len() } else { 0 };
+                galley = widened(layout, galley, [&name[..at], own, mark(left_away[1])], width);
             }
         }
         let mut kept = (own.chars().count() as f32 * width / galley.size().x).floor() as usize;
@@ -42,17 +43,18 @@ pub(crate) fn name_galley(
 /// A number or a side alone says little: an own part of fewer letters gets as many as there is room for of what stands before it.
 const FEWEST: usize = 6;
 
-/// The own part of a name with as much of what stands before it as fits, at best `galley`, which fits as it is or is cut otherwise.
+/// The own part of a name with as much of what stands before it as fits, and what stands for the rest behind it; `galley` where there is no
+/// room for more.
 fn widened(
     layout: impl Fn(String) -> Arc<Galley>,
     galley: Arc<Galley>,
-    name: &str,
-    own: &str,
+    [before, own, behind]: [&str; 3],
     width: f32,
 ) -> Arc<Galley> {
-    let Some(at) = name.find(own).filter(|&at| at > 0 && galley.size().x <= width) else { return galley };
-    let before: Vec<char> = name[..at].chars().collect();
-    let behind = if at + own.len() < name.len() { "…" } else { "" };
+    if galley.size().x > width {
+        return galley;
+    }
+    let before: Vec<char> = before.chars().collect();
     // As many as are surely too many, then fewer until they fit: letters differ in width.
     let narrowest = 2.5_f32;
     let mut taken = before.len().min((width / narrowest) as usize);
@@ -122,10 +124,14 @@ mod tests {
         let name = "hand_helper_control_bone_number_3";
         for width in [60.0, 100.0, 150.0, 190.0] {
             let (words, own_width, is_cut) = written(name, shared, width);
-            assert!(is_cut && words.starts_with('…') && words.ends_with("number_3"), "{words}");
+            assert!(is_cut && words.starts_with('…') && words.ends_with("mber_3"), "{words}");
             assert!(own_width <= width && own_width > width - 12.0, "{words} takes {own_width} of {width}");
         }
         assert_eq!(written(name, shared, 20.0).0, "…3", "no room for more");
+        // The same number may stand in what is shared.
+        let shared = Shared { start: "Row3_bone_number_", end: "_jnt" };
+        let (words, ..) = written("Row3_bone_number_3_jnt", shared, 100.0);
+        assert!(words.starts_with('…') && words.ends_with("_number_3…"), "{words}");
     }
 
     #[test]

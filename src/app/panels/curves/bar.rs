@@ -212,7 +212,7 @@ fn shape_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
         .on_hover_text("How fast the way from key to key is gone, where there are frames between them");
     if scope.now.chosen_keys > 2 {
         let action = Action::Curve(CurveAction::OneSegment);
-        let one = ui.button(RichText::new("one").size(12.5));
+        let one = ui.button(RichText::new("one segment").size(12.5));
         one.widget_info(|| WidgetInfo::labeled(Role::Button, true, "Make one segment"));
         if one.on_hover_text(tooltip_text(ui, action)).clicked() {
             scope.out.push(Command::Do(action));
