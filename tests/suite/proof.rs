@@ -237,7 +237,10 @@ fn with_joint(clip: &Clip, joint: usize, change: impl Fn(&RotationTrack) -> Rota
 fn tells_no_moved_frame_untouched(before: &Clip, after: &Clip, joint: usize) -> usize {
     let found = measure(before, after);
     let moved = |frame: usize| {
-        let secs = before.grid.time(frame);
+        // A key that lies at the frame but for the rounding of its time tells the frame's pose, held segments too.
+        let times = &before.rotation(joint).expect("it turns").times;
+        let (at, key) = (before.grid.time(frame), times.at(times.nearest(before.grid.time(frame))));
+        let secs = if (key - at).abs() < 1e-5 { key } else { at };
         let [own, others] = [before, after].map(|clip| clip.rotation(joint).expect("it turns").at(secs));
         own.turn_to(others) > 1e-9
     };
