@@ -35,8 +35,7 @@ pub(crate) fn menus_ui(ui: &mut Ui, scope: &mut Scope<'_>) {
                     list = list.vertical_scroll_offset(0.0);
                 }
                 // That there is more is seen without the pointer on the bar.
-                let bar = &mut ui.spacing_mut().scroll;
-                (bar.dormant_handle_opacity, bar.floating_allocated_width) = (0.6, 8.0);
+                ui.spacing_mut().scroll.dormant_handle_opacity = 0.8;
                 list.show(ui, |ui| menu_ui(ui, menu, scope));
             });
         }
