@@ -6,10 +6,13 @@ use std::sync::Arc;
 
 use glam::DVec3;
 use turnwright::clip::{Clip, FrameGrid, JointTracks, RotationTrack, Times};
+use turnwright::exchange::{self, OpenOptions};
 use turnwright::mend::{SurveyOptions, change_at_tips, survey};
 use turnwright::rotor::{Axis, Bivector, Rotor};
 use turnwright::skeleton::{Joint, JointKind, Skeleton, Transform};
 use turnwright::snag::{SnagKind, Unwatched};
+
+use crate::support::shared;
 
 /// Seconds of the built clip.
 const SECS: f64 = 6.0;
@@ -113,4 +116,21 @@ fn what_is_drawn_anew_goes_on_at_its_borders_as_fast_as_the_motion_beside_it() {
         assert!(others.into_iter().all(|key| old.keys[key] == mended.keys[key]));
         assert!(broken.same_joint(&found.mended, 0) && broken.same_joint(&found.mended, 2));
     }
+}
+
+/// The dance of the outside data has flips in the legs. Where only trembling is asked for they are no business of its mend.
+#[test]
+fn a_tremble_is_smoothed_within_a_bound_where_flips_are_not_looked_for() {
+    let Some(path) = shared("data/bvh/cmu_05_06_dance.bvh") else { return };
+    let source = exchange::open(&path, &OpenOptions::default()).unwrap();
+    let options = SurveyOptions { kinds: vec![SnagKind::Jitter], ..SurveyOptions::default() };
+    let found = survey(&source.clips[0], &options, &Unwatched).unwrap();
+    assert!(found.snags.len() > 20, "{}", found.snags.len());
+    let mut widest = 0.0_f64;
+    for (snag, change) in found.snags.iter().zip(&found.changes_rad) {
+        assert!(change.to_degrees() < 30.0, "{}: {}", snag.text, change.to_degrees());
+        assert!(!snag.safe || snag.size_rad.to_degrees() < 12.1, "{}", snag.text);
+        widest = widest.max(snag.size_rad);
+    }
+    assert!(widest.to_degrees() > 12.1, "there are flips: {widest}");
 }
