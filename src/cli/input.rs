@@ -40,6 +40,8 @@ pub(super) struct Work {
     pub(super) evaluation: Evaluation,
     /// Snags that are left as they are.
     pub(super) left: Vec<SnagMark>,
+    /// The limits that its proof is held against.
+    pub(super) limits_held: Option<Arc<Limits>>,
 }
 
 impl Work {
@@ -188,7 +190,12 @@ fn open_scene(
                 limits[own.clip].clone_from(&own.limits);
             }
             results[own.clip] = evaluation.result.clone();
-            works[own.clip] = Some(Work { passes: own.passes.clone(), evaluation, left: own.left.clone() });
+            works[own.clip] = Some(Work {
+                passes: own.passes.clone(),
+                evaluation,
+                left: own.left.clone(),
+                limits_held: own.limits_held(),
+            });
             let is_meant = address.clip.as_ref().is_none_or(|wanted| {
                 *wanted == own.name || *wanted == source.clip_label(own.clip) || *wanted == work.to_string()
             });

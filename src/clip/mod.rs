@@ -46,7 +46,8 @@ pub use displace::{Push, PushFrame, pushed};
 pub use feet::standing_feet;
 pub use key_edit::{KeyChange, KeyEdit, NewKey, with_key_edits};
 pub use keys::Keys;
-pub use loop_seam::{LoopSeam, ends_on_first_pose};
+pub(crate) use loop_seam::key_at;
+pub use loop_seam::{LoopSeam, Round};
 pub use path::{
     Handles, MeantTurn, Pace, PathError, PathKind, Paths, Peak, Segment, Segments, Spacing, SpacingError,
 };

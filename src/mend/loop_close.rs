@@ -3,8 +3,8 @@
 use glam::DVec3;
 
 use crate::clip::{
-    Clip, FileAngles, JointTracks, LoopSeam, PathKind, Paths, RotationTrack, Segments, Stored, Times,
-    VectorTrack, ends_on_first_pose,
+    Clip, FileAngles, JointTracks, LoopSeam, PathKind, Paths, RotationTrack, Round, Segments, Stored, Times,
+    VectorTrack, key_at,
 };
 use crate::rotor::{Bivector, Rotor};
 use crate::snag::{LoopClose, LoopForm};
@@ -44,8 +44,8 @@ impl Default for LoopOptions {
 /// What closing a loop came to.
 #[derive(Clone, Debug, PartialEq)]
 pub struct LoopReport {
-    /// Whether the last frame stands for the first of the next round.
-    pub is_first_again: bool,
+    /// What is played round and round; frames before it are left as they are.
+    pub round: Round,
     /// The joints that did not meet, and by how much.
     pub seams: Vec<(usize, LoopSeam)>,
 }
@@ -55,17 +55,20 @@ pub struct LoopReport {
 ///
 /// Source of the two forms: the methods page, section 18.
 pub fn close_loop(clip: &Clip, options: &LoopOptions) -> (Clip, LoopReport) {
-    let is_first_again = options.is_first_again.unwrap_or_else(|| ends_on_first_pose(clip, options.up));
-    let mut report = LoopReport { is_first_again, seams: Vec::new() };
+    let round = match options.is_first_again {
+        Some(is_first_again) => Round { is_first_again, ..Round::closed(clip) },
+        None => Round::of(clip, options.up),
+    };
+    let mut report = LoopReport { round, seams: Vec::new() };
     let mut closed = clip.clone();
     for joint in 0..clip.joints.len() {
-        let seam = LoopSeam::of(clip, joint, is_first_again, options.up);
+        let seam = LoopSeam::of(clip, joint, round, options.up);
         let apart = seam.turn.length().max(seam.turn_rate.length());
         if apart > 1e-9 || seam.place.length() > 1e-12 {
             report.seams.push((joint, seam));
             let by_size = if seam.turn.length() > SPREAD_RAD { LoopForm::Window } else { LoopForm::Spread };
             let form = options.form.unwrap_or(by_size);
-            let how = LoopClose { form, is_first_again, with_rate: options.with_rate };
+            let how = LoopClose { form, round, with_rate: options.with_rate };
             closed = close_joint(&closed, joint, how, options.up);
         }
     }
@@ -77,7 +80,7 @@ const ROUNDS: usize = 3;
 
 /// The clip with the loop of one joint closed. Keys to which nothing is added keep their numbers.
 pub(super) fn close_joint(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> Clip {
-    if how.is_first_again && !how.with_rate {
+    if how.round.is_first_again && !how.with_rate {
         return round(clip, joint, how, up);
     }
     closed_by_its_ends(clip, joint, how, up)
@@ -100,12 +103,13 @@ fn closed_by_its_ends(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> O
     let track = clip.rotation(joint)?;
     let count = track.keys.len();
     let is_whole = track.file_angles().is_none_or(|angles| angles.axes.len() == 3);
-    let is_curve = how.is_first_again && LoopSeam::own_turn_rate(track).is_some();
+    let first_key = key_at(&track.times, clip.grid.time(how.round.first));
+    let is_curve = how.round.is_first_again && LoopSeam::own_turn_rate(track, first_key).is_some();
     if track.tangents.is_some() || is_curve || !is_whole || count < 4 * END_FRAMES {
         return None;
     }
-    let [low, high] = end_keys(track, clip)?;
-    let ends: Vec<usize> = (0..low).chain(high..count).collect();
+    let [low, high] = end_keys(track, clip, how.round.first)?;
+    let ends: Vec<usize> = (first_key..low).chain(high..count).collect();
     if ends.iter().any(|&key| track.keys[key].try_normalize().is_none()) {
         return None;
     }
@@ -119,8 +123,10 @@ fn closed_by_its_ends(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> O
         changes.push(change);
     }
     let mut draft = Draft::new(track);
-    // The first key is aligned to the second as the round before the last has left that.
-    draft.copy_key(1, before_last.rotation(joint)?);
+    if first_key == 0 {
+        // The first key is aligned to the second as the round before the last has left that.
+        draft.copy_key(1, before_last.rotation(joint)?);
+    }
     let shapes: Vec<(Shape, &Change)> =
         changes.iter().map(|change| (change.shape(&track.times), change)).collect();
     for key in 0..count {
@@ -140,19 +146,19 @@ fn closed_by_its_ends(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> O
     Some(closed)
 }
 
-/// How many keys from the first on, and from which one on to the last, tell the poses at the frames at both ends; `None` where they do not
-/// tell them, or where little lies between.
-fn end_keys(track: &RotationTrack, clip: &Clip) -> Option<[usize; 2]> {
+/// Up to which key, and from which one on, they tell the poses at the frames at both ends of a round that begins at frame `first`;
+/// `None` where they do not tell them, or where little lies between.
+fn end_keys(track: &RotationTrack, clip: &Clip, first: usize) -> Option<[usize; 2]> {
     let count = track.keys.len();
     let passes_keys = matches!(track.paths, Paths::Every(kind) if kind != PathKind::BSpline);
     if passes_keys && track.times == clip.grid.times {
-        return Some([END_FRAMES, count - END_FRAMES]);
+        return Some([first + END_FRAMES, count - END_FRAMES]);
     }
     // As in glTF, where each track has times of its own: between keys a pose is told by those beside it.
     let is_straight = matches!(track.paths, Paths::Every(PathKind::Slerp | PathKind::Hold))
         && track.segments == Segments::default();
     let last = clip.grid.count().checked_sub(END_FRAMES)?;
-    let (since, until) = (clip.grid.time(END_FRAMES - 1), clip.grid.time(last));
+    let (since, until) = (clip.grid.time(first + END_FRAMES - 1), clip.grid.time(last));
     let low = (0..count).find(|&key| track.times.at(key) >= since)? + 1;
     let high = (0..count).rev().find(|&key| track.times.at(key) <= until)?;
     (is_straight && low >= 2 && low + 2 * END_FRAMES <= high).then_some([low, high])
@@ -179,7 +185,7 @@ fn of_keys(track: &RotationTrack, keys: &[usize]) -> RotationTrack {
 /// What closes the loop of a joint.
 struct Change {
     seam: LoopSeam,
-    /// The first and the last frame's time.
+    /// The times of the round's first frame and of the last one.
     from: f64,
     to: f64,
     step: f64,
@@ -189,14 +195,15 @@ struct Change {
 impl Change {
     /// `None` for a clip without a step.
     fn new(clip: &Clip, joint: usize, how: LoopClose, up: DVec3) -> Option<Self> {
-        let seam = if how.is_first_again {
-            LoopSeam::in_own_rates(clip, joint, up)
+        let first = how.round.first;
+        let seam = if how.round.is_first_again {
+            LoopSeam::in_own_rates(clip, joint, first, up)
         } else {
-            LoopSeam::of(clip, joint, false, up)
+            LoopSeam::of(clip, joint, how.round, up)
         };
-        let last = clip.grid.count().checked_sub(1).filter(|&last| last > 0)?;
-        let (from, to) = (clip.grid.time(0), clip.grid.time(last));
-        let step = (to - from) / last as f64;
+        let last = clip.grid.count().checked_sub(1).filter(|&last| last > first)?;
+        let (from, to) = (clip.grid.time(first), clip.grid.time(last));
+        let step = (to - from) / (last - first) as f64;
         // glTF: the last key may lie a little before the frame nearest to it.
         let to = to.min(clip.duration_secs.max(from + 0.5 * step));
         Some(Self { seam, from, to, step, how })
@@ -206,9 +213,11 @@ impl Change {
     fn shape(&self, times: &Times) -> Shape {
         let (first, last) = times.span().unwrap_or((self.from, self.to));
         let (from, to) = (self.from.max(first.min(self.to)), self.to.min(last.max(self.from)));
-        let beyond = if self.how.is_first_again { 0.0 } else { self.step };
+        let beyond = if self.how.round.is_first_again { 0.0 } else { self.step };
         let key_secs = times.median_step().unwrap_or(self.step);
-        Shape { from, secs: (to - from).max(self.step) + beyond, how: self.how, key_secs }
+        let before = if self.how.round.first == 0 { f64::INFINITY } else { 1e-3 * self.step };
+        let secs = (to - from).max(self.step) + beyond;
+        Shape { opens: from - before, from, secs, how: self.how, key_secs }
     }
 
     /// By what a pose is turned on the bone side.
@@ -291,12 +300,17 @@ fn changed(clip: &Clip, joint: usize, change: &Change) -> Clip {
             .times
             .iter()
             .zip(track.keys.iter())
-            .map(|(secs, place)| *place + change.way(&shape, secs))
+            .map(|(secs, place)| if secs < shape.opens { *place } else { *place + change.way(&shape, secs) })
             .collect();
-        let tangents = track.tangents.as_ref().map(|tangents| {
-            let each = track.times.iter().zip(tangents.iter());
-            each.map(|(secs, both)| both.map(|own| own + change.way_rate(&shape, secs))).collect()
-        });
+        let tangents =
+            track.tangents.as_ref().map(|tangents| {
+                let each = track.times.iter().zip(tangents.iter());
+                let is_open = |secs: f64| secs >= shape.opens;
+                each.map(|(secs, both)| {
+                    if is_open(secs) { both.map(|own| own + change.way_rate(&shape, secs)) } else { *both }
+                })
+                .collect()
+            });
         let track = VectorTrack { keys: keys.into(), tangents, ..track.clone() };
         let tracks = JointTracks { translation: Some(track), ..(*closed.joints[joint]).clone() };
         closed.joints[joint] = tracks.into();
@@ -306,6 +320,8 @@ fn changed(clip: &Clip, joint: usize, change: &Change) -> Clip {
 
 /// How much of a difference is put in where.
 struct Shape {
+    /// What lies before is not of the round.
+    opens: f64,
     from: f64,
     /// How long a round is.
     secs: f64,
@@ -317,6 +333,9 @@ struct Shape {
 impl Shape {
     /// Whether nothing is added to the turn at a time.
     fn is_calm(&self, secs: f64, change: &Change) -> bool {
+        if secs < self.opens {
+            return true;
+        }
         let (since, until) = self.since_and_until(secs);
         let reach = match self.how.form {
             LoopForm::Spread if change.seam.turn != Bivector::ZERO => return false,
@@ -440,8 +459,8 @@ mod tests {
     fn closed_both_ways(clip: &Clip, how: LoopClose) -> [Clip; 2] {
         let rounds = (0..ROUNDS).fold(clip.clone(), |clip, _| round(&clip, 1, how, DVec3::Y));
         let at_once = closed_by_its_ends(clip, 1, how, DVec3::Y).unwrap();
-        let left = LoopSeam::of(&at_once, 1, how.is_first_again, DVec3::Y);
-        let missed = LoopSeam::of(clip, 1, how.is_first_again, DVec3::Y);
+        let left = LoopSeam::of(&at_once, 1, how.round, DVec3::Y);
+        let missed = LoopSeam::of(clip, 1, how.round, DVec3::Y);
         assert!(left.turn.length() < 1e-3 * missed.turn.length());
         assert!(left.turn_rate.length() < 0.1 * missed.turn_rate.length());
         [rounds, at_once]
@@ -451,7 +470,7 @@ mod tests {
     fn keys_at_times_of_their_own_are_closed_by_the_ends_as_round_after_round() {
         for (wide_deg, form) in [(4.0, LoopForm::Spread), (50.0, LoopForm::Window)] {
             for is_first_again in [false, true] {
-                let how = LoopClose { form, is_first_again, with_rate: true };
+                let how = LoopClose { form, round: Round { first: 0, is_first_again }, with_rate: true };
                 let clip = with_own_times(&clip(400, wide_deg));
                 let [rounds, at_once] = closed_both_ways(&clip, how);
                 let [old, new, was] = [&rounds, &at_once, &clip].map(|clip| clip.rotation(1).unwrap());
@@ -493,7 +512,8 @@ mod tests {
                 };
                 clip.joints[1] =
                     JointTracks { translation: Some(places), ..(*clip.joints[1]).clone() }.into();
-                let how = LoopClose { form, is_first_again: true, with_rate: true };
+                let how =
+                    LoopClose { form, round: Round { first: 0, is_first_again: true }, with_rate: true };
                 let closed = close_joint(&clip, 1, how, DVec3::Y);
                 let rates = |clip: &Clip| {
                     let track = clip.rotation(1).unwrap();
@@ -522,7 +542,7 @@ mod tests {
     fn told_by_the_ends_a_loop_is_closed_as_round_after_round() {
         for (wide_deg, form) in [(4.0, LoopForm::Spread), (50.0, LoopForm::Window)] {
             for is_first_again in [false, true] {
-                let how = LoopClose { form, is_first_again, with_rate: true };
+                let how = LoopClose { form, round: Round { first: 0, is_first_again }, with_rate: true };
                 let clip = clip(400, wide_deg);
                 let [rounds, at_once] = closed_both_ways(&clip, how);
                 let [old, new, was] = [&rounds, &at_once, &clip].map(|clip| clip.rotation(1).unwrap());

@@ -6,7 +6,7 @@
 
 use glam::DVec3;
 
-use crate::clip::{Clip, LoopSeam, ends_on_first_pose};
+use crate::clip::{Clip, LoopSeam, Round};
 use crate::rotor::{Bivector, Rotor, chordal_mean, slerp};
 use crate::skeleton::Mirror;
 
@@ -110,15 +110,15 @@ impl Pair {
         if draft.len() != grid.count() || !(0..draft.len()).all(is_frame) {
             return None;
         }
-        let is_first_again = ends_on_first_pose(clip, DVec3::Y);
-        let round = draft.len() - usize::from(is_first_again);
+        let seam = Round::of(clip, DVec3::Y);
+        let round = draft.len() - usize::from(seam.is_first_again);
         let mut steps: Vec<f64> = own.windows(2).map(|two| two[0].turn_to(two[1])).collect();
         let middle = steps.len() / 2;
         let usual = *steps.select_nth_unstable_by(middle, f64::total_cmp).1;
         let closes = |joint: usize| {
-            LoopSeam::of(clip, joint, is_first_again, DVec3::Y).turn.length() <= SEAM_STEPS * usual + 1e-3
+            LoopSeam::of(clip, joint, seam, DVec3::Y).turn.length() <= SEAM_STEPS * usual + 1e-3
         };
-        let is_loop = closes(joint) && closes(partner);
+        let is_loop = seam.first == 0 && closes(joint) && closes(partner);
         Some(Self {
             own,
             other,

@@ -9,7 +9,7 @@ use crate::skeleton::RestChoice;
 use crate::snag::{Snag, SnagKind};
 
 use super::marker::Marker;
-use super::pass::{ClipRef, MendPass, Need, Pass, PassId, SnagMark};
+use super::pass::{ClipRef, MendPass, Need, Pass, PassId, PassStep, SnagMark};
 
 /// A file the document was made from.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -101,6 +101,18 @@ impl ClipWork {
     /// The pass that mends this kind.
     pub fn mend_pass(&self, kind: SnagKind) -> Option<&MendPass> {
         self.passes.iter().filter_map(|pass| pass.step.as_mend()).find(|mend| mend.kind == kind)
+    }
+
+    /// The limits that a proof holds the source and the result against: those of the search, else those that its last limits pass
+    /// brings it within, unless that pass is one for another skeleton's joints.
+    pub fn limits_held(&self) -> Option<Arc<Limits>> {
+        let on_own_skeleton = self.passes.iter().filter(|pass| pass.on).map(|pass| &pass.step);
+        let on_own_skeleton = on_own_skeleton.take_while(|step| !matches!(step, PassStep::Retarget(_)));
+        let of_pass = |step: &PassStep| match step {
+            PassStep::Limits(pass) => Some(pass.limits.clone()),
+            _ => None,
+        };
+        self.limits.clone().or_else(|| on_own_skeleton.filter_map(of_pass).last())
     }
 
     /// All snags that a pass mends, switched on or not.

@@ -1,6 +1,6 @@
 //! One fault that was found, as data.
 
-use crate::clip::Foot;
+use crate::clip::{Foot, Round};
 use crate::limit::JointLimit;
 use crate::rotor::Rotor;
 
@@ -73,8 +73,8 @@ impl Remedy {
 pub struct LoopClose {
     /// How the difference is spread.
     pub form: LoopForm,
-    /// Whether the last frame stands for the first of the next round, or the first follows it.
-    pub is_first_again: bool,
+    /// What is played round and round.
+    pub round: Round,
     /// Whether the rates are made to meet too.
     pub with_rate: bool,
 }

@@ -2,7 +2,7 @@
 
 use glam::DVec3;
 
-use crate::clip::{Clip, LoopSeam, ends_on_first_pose};
+use crate::clip::{Clip, LoopSeam, Round, key_at};
 use crate::rotor::Bivector;
 use crate::skeleton::JointKind;
 
@@ -20,6 +20,9 @@ const USUAL: f64 = 2.0;
 /// Up to here the difference is spread over the whole clip; beyond, that would be seen, and it is brought in near the seam.
 const SPREAD_RAD: f64 = 10.0 / 180.0 * std::f64::consts::PI;
 
+/// A joint that ends so far from where it begins may be no loop at all: whether to close it is for a person to say.
+const MEANT_RAD: f64 = 30.0 / 180.0 * std::f64::consts::PI;
+
 /// A place that misses by less than this share of the figure is a loop well closed.
 const LEAST_SHARE: f64 = 0.005;
 
@@ -31,22 +34,22 @@ pub(super) fn find_all(clip: &Clip) -> Vec<Snag> {
     if clip.grid.count() < 4 {
         return Vec::new();
     }
-    let is_first_again = ends_on_first_pose(clip, DVec3::Y);
+    let round = Round::of(clip, DVec3::Y);
     (0..clip.joints.len())
         .filter(|&joint| clip.skeleton.joints()[joint].kind == JointKind::Joint)
-        .filter_map(|joint| of_joint(clip, joint, is_first_again))
+        .filter_map(|joint| of_joint(clip, joint, round))
         .collect()
 }
 
-fn of_joint(clip: &Clip, joint: usize, is_first_again: bool) -> Option<Snag> {
-    let seam = LoopSeam::of(clip, joint, is_first_again, DVec3::Y);
+fn of_joint(clip: &Clip, joint: usize, round: Round) -> Option<Snag> {
+    let seam = LoopSeam::of(clip, joint, round, DVec3::Y);
     let step_secs = clip.grid.times.median_step()?;
     let [noise, usual] = usual_changes(clip, joint);
     let (turn, rate) = (seam.turn.length(), seam.turn_rate.length());
     let size = figure_size(clip).max(f64::MIN_POSITIVE);
     let place = seam.place.length() / size;
     // A pose that comes again does so but for noise; one that comes next is told from the steps on both sides.
-    let doubt = if is_first_again { NOISES * noise } else { USUAL * usual };
+    let doubt = if round.is_first_again { NOISES * noise } else { USUAL * usual };
     let misses_turn = turn > LEAST_RAD + doubt;
     // A rate is told from four steps on each side, each as uncertain as a step.
     let misses_rate = rate * step_secs > LEAST_RAD + 2.0 * USUAL * usual;
@@ -68,26 +71,31 @@ fn of_joint(clip: &Clip, joint: usize, is_first_again: bool) -> Option<Snag> {
     let form = if turn > SPREAD_RAD { LoopForm::Window } else { LoopForm::Spread };
     let keys = clip.rotation(joint).map_or(1, |track| track.keys.len().max(1));
     let last = clip.grid.count() - 1;
+    let first_key = clip.rotation(joint).map_or(0, |track| key_at(&track.times, clip.grid.time(round.first)));
+    let (from, start) = match round.first {
+        0 => (String::new(), "the first".to_owned()),
+        first => (format!(" from frame {first} on, after a calibration pose,"), format!("frame {first}")),
+    };
     Some(Snag {
         kind: SnagKind::Seam,
         joint,
-        first_key: 0,
+        first_key,
         last_key: keys - 1,
-        first_frame: 0,
+        first_frame: round.first,
         last_frame: last,
-        first_secs: clip.grid.time(0),
+        first_secs: clip.grid.time(round.first),
         last_secs: clip.grid.time(last),
         size_rad: turn.max(rate * step_secs).max(place),
         confidence: 1.0,
-        remedy: Remedy::CloseLoop(LoopClose { form, is_first_again, with_rate: misses_rate }),
-        safe: true,
+        remedy: Remedy::CloseLoop(LoopClose { form, round, with_rate: misses_rate }),
+        safe: turn <= MEANT_RAD,
         text: format!(
-            "In a loop {label} {} ({})",
+            "In a loop{from} {label} {} ({})",
             said.join(" and "),
-            if is_first_again {
-                "the last frame is the first again"
+            if round.is_first_again {
+                format!("the last frame is {start} again")
             } else {
-                "the first frame follows the last"
+                format!("{start} follows the last")
             }
         ),
     })

@@ -5,8 +5,8 @@ use std::sync::Arc;
 
 use glam::DVec3;
 use turnwright::clip::{
-    Clip, ContactOptions, FileAngles, FootPart, FrameGrid, JointTracks, LoopSeam, RotationTrack, Times,
-    contacts, ends_on_first_pose, leg_lengths, slides, standing_feet,
+    Clip, ContactOptions, FileAngles, FootPart, FrameGrid, JointTracks, LoopSeam, RotationTrack, Round,
+    Times, contacts, leg_lengths, slides, standing_feet,
 };
 use turnwright::mend::{LoopOptions, PlantOptions, SurveyOptions, apply_all, close_loop, plant_feet, survey};
 use turnwright::rotor::{Axis, Bivector, EulerOrder, Rotor};
@@ -80,8 +80,14 @@ fn whether_the_last_frame_is_the_first_again_is_told_from_the_motion() {
             .collect()
     };
     for noise in [0.0, 0.002] {
-        assert!(ends_on_first_pose(&one_joint(round(25, noise)), DVec3::Y), "frame 24 is frame 0 again");
-        assert!(!ends_on_first_pose(&one_joint(round(24, noise)), DVec3::Y), "frame 0 follows frame 23");
+        assert!(
+            Round::of(&one_joint(round(25, noise)), DVec3::Y).is_first_again,
+            "frame 24 is frame 0 again"
+        );
+        assert!(
+            !Round::of(&one_joint(round(24, noise)), DVec3::Y).is_first_again,
+            "frame 0 follows frame 23"
+        );
     }
     // The real loops end on their first pose, and none of their joints is told.
     for (file, names) in [
@@ -93,7 +99,8 @@ fn whether_the_last_frame_is_the_first_again_is_told_from_the_motion() {
         ("gltf/wasp.glb", &["WaspArmature|Wasp_Flying"]),
     ] {
         for clip in clips(file).iter().filter(|clip| names.contains(&clip.name.as_str())) {
-            assert!(ends_on_first_pose(clip, DVec3::Y), "{file} {}", clip.name);
+            let round = Round::of(clip, DVec3::Y);
+            assert!(round.is_first_again && round.first == 0, "{file} {}: {round:?}", clip.name);
             let told = find_in_clip(clip, SnagKind::Seam);
             assert!(told.is_empty(), "{file} {}: {:?}", clip.name, told.first().map(|snag| &snag.text));
         }
@@ -135,8 +142,7 @@ fn a_seam_that_is_planted_into_a_real_loop_is_found_and_closed() {
                     found += 1;
                     let left = find_in_clip(&survey.mended, SnagKind::Seam);
                     assert!(left.is_empty(), "{file} {}: {}", clip.name, left[0].text);
-                    let seam =
-                        LoopSeam::of(&survey.mended, joint, ends_on_first_pose(&clip, DVec3::Y), DVec3::Y);
+                    let seam = LoopSeam::of(&survey.mended, joint, Round::of(&clip, DVec3::Y), DVec3::Y);
                     assert!(seam.turn.length() < 1e-6, "{file} {}: {:?}", clip.name, seam);
                 }
             }
@@ -169,7 +175,7 @@ fn a_capture_is_closed_and_keeps_its_stride() {
                 let step =
                     |a: usize, b: usize| (track.sound_key(a).reverse() * track.sound_key(b)).plane_angles();
                 let last = track.keys.len() - 1;
-                let over = if report.is_first_again {
+                let over = if report.round.is_first_again {
                     step(0, 1) - step(last - 1, last)
                 } else {
                     step(last, 0) - step(last - 1, last)
@@ -184,6 +190,32 @@ fn a_capture_is_closed_and_keeps_its_stride() {
                 );
             }
         }
+    }
+}
+
+/// A capture whose first frame is a calibration pose: a jump of 87° into the motion is no rate that the end would have to meet.
+#[test]
+fn a_calibration_pose_before_the_motion_is_not_of_the_loop() {
+    for clip in clips("bvh/cmu_02_01_walk.bvh") {
+        let round = Round::of(&clip, DVec3::Y);
+        assert_eq!(round.first, 1);
+        let last = clip.grid.count() - 1;
+        let seams = find_in_clip(&clip, SnagKind::Seam);
+        for snag in &seams {
+            assert_eq!((snag.first_frame, snag.last_frame), (1, last), "{}", snag.text);
+            let joint = snag.joint;
+            let closed = turnwright::mend::apply(&clip, snag).unwrap();
+            let [was, is] = [&clip, &closed].map(|clip| clip.rotation(joint).unwrap());
+            assert_eq!(was.keys[0], is.keys[0], "{}", snag.text);
+            let missing = LoopSeam::of(&clip, joint, round, DVec3::Y);
+            let change = (0..=last).map(|key| was.keys[key].turn_to(is.keys[key])).fold(0.0, f64::max);
+            // Half of what is missing at each end, and what brings the rates together.
+            let most = 0.5 * missing.turn.length() + 0.05 * missing.turn_rate.length() + 1e-6;
+            assert!(change < most && change < 0.5, "{}: {change} of {most}", snag.text);
+            let left = LoopSeam::of(&closed, joint, round, DVec3::Y);
+            assert!(left.turn.length() < 1e-3 * missing.turn.length(), "{}: {left:?}", snag.text);
+        }
+        assert!(seams.len() > 5, "{}", seams.len());
     }
 }
 

@@ -573,6 +573,13 @@ fn scenes_and_files_give_limits_back() {
     for edit in edits {
         document = edit.apply(&document).unwrap();
     }
+    // A proof holds the clip against those of its limits pass too.
+    let alone = Edit::SetLimits { work: 0, limits: None }.apply(&document).unwrap();
+    assert_eq!(alone.works[0].limits_held().unwrap().joints.len(), 1);
+    let mut off = alone.works[0].clone();
+    off.passes.iter_mut().for_each(|pass| pass.on = false);
+    assert_eq!(off.limits_held(), None);
+
     let label = |_: usize, _: usize, joint: usize| ["body", "limb"][joint].to_owned();
     let scene = exchange::ron::to_text(path, &document, &label).unwrap();
     let mut file = exchange::ron::from_text(path, &scene).unwrap();

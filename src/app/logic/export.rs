@@ -115,7 +115,7 @@ fn prove(
             before: source.clips.get(work.clip)?.clone(),
             after: after.clips.get(place?)?.clone(),
             kinds: work.search.kinds(),
-            limits: work.limits.clone(),
+            limits: work.limits_held(),
             passes: proof::passes_run(&work.passes, evaluation),
             meant: work.left.clone(),
         })

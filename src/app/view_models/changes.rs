@@ -96,10 +96,24 @@ pub fn changes(source: &Clip, result: &Clip) -> Changes {
         // Keys of both that lie between frames, and what lies between keys far apart.
         let between = |time: &f64| (result.grid.time(result.grid.frame(*time)) - time).abs() > 1e-6;
         let at_keys = differing.keys.iter().map(|&key| after.times.at(key)).filter(between);
-        let wide = differing.stretches.iter().filter(|[start, end]| (end - start) * result.grid.rate > 1.5);
-        let within = wide.flat_map(|&[start, end]| {
-            let gone = times_within(&before.times, [start, end]).filter(between);
-            gone.chain(std::iter::once(0.5 * (start + end)))
+        // Within a frame the short way between poses tells nothing new, where no keys went and no turns are meant.
+        let is_plain = [before, after].iter().all(|track| track.segments.are_plain());
+        let is_long = |[start, end]: [f64; 2]| !is_plain || (end - start) * result.grid.rate > 1.5;
+        let within = differing.stretches.iter().flat_map(|&[start, end]| {
+            let gone: Vec<f64> = times_within(&before.times, [start, end]).collect();
+            let ends = [start.max(0.0), end.min(both)];
+            let looked_at = !gone.is_empty() || is_long(ends);
+            let all: Vec<f64> =
+                std::iter::once(ends[0]).chain(gone.iter().copied()).chain([ends[1]]).collect();
+            // Where whole turns or a spacing are meant the largest turn is anywhere.
+            let parts = if is_plain { 2 } else { 8 };
+            let middles: Vec<f64> = all
+                .windows(2)
+                .flat_map(|two| {
+                    (1..parts).map(|part| two[0] + (two[1] - two[0]) * f64::from(part) / f64::from(parts))
+                })
+                .collect();
+            gone.into_iter().filter(between).chain(middles.into_iter().filter(move |_| looked_at))
         });
         let at_frames = own.iter().map(|&frame| result.grid.time(frame));
         let times = at_frames.chain(at_keys).chain(within);
@@ -143,9 +157,12 @@ mod tests {
     use std::sync::Arc;
 
     use super::*;
-    use crate::clip::{JointTracks, PathKind, Paths, RotationTrack};
+    use crate::clip::{
+        JointTracks, MeantTurn, PathKind, Paths, RotationTrack, Segment, Segments, Spacing, resampled,
+    };
     use crate::demo;
     use crate::exchange::{self, OpenOptions};
+    use crate::rotor::Axis;
 
     /// Some keys of a track of rotors.
     fn only(track: &RotationTrack, keys: impl Iterator<Item = usize> + Clone) -> RotationTrack {
@@ -178,6 +195,27 @@ mod tests {
         assert!(found.largest_deg > 0.5, "{found:?}");
         assert_eq!((found.joints, found.frames, found.longer), (1, clip.grid.count() - 4, 0));
         assert!(!found.over_time.is_empty() && !found.sentence().contains("no pose moves"), "{found:?}");
+    }
+
+    /// A spike of one frame that a slower rate steps over, and a whole turn within one frame.
+    #[test]
+    fn what_lies_within_a_frame_is_looked_at() {
+        let clip = clip();
+        let spike = |track: &RotationTrack| {
+            let mut keys = track.keys.to_vec();
+            keys[7] = keys[7] * Axis::X.rotor(60.0_f64.to_radians());
+            RotationTrack { keys: keys.into(), ..track.clone() }
+        };
+        let before = with_one_joint(&clip, spike);
+        let slower = resampled(&before, 0.5 * before.grid.rate, 0.0, before.duration_secs);
+        assert!(changes(&before, &slower).largest_deg > 55.0, "{:?}", changes(&before, &slower));
+        let turn = |track: &RotationTrack| {
+            let ease = [Segment { turn: MeantTurn::new(1).unwrap(), spacing: Spacing::EaseIn }];
+            RotationTrack { segments: Segments::new(&ease, track.segments.ends()).unwrap(), ..track.clone() }
+        };
+        let found = changes(&clip, &with_one_joint(&clip, turn));
+        let exact = |u: f64| (360.0 * u * u).min(360.0 - 360.0 * u * u);
+        assert!(found.largest_deg > exact(0.75) - 8.0, "{found:?}");
     }
 
     #[test]

@@ -53,13 +53,16 @@ pub(crate) fn run(args: &ProofArgs, output: &mut Output) -> Result<u8, CliError>
     let (b, a) = (before.first(), after.first());
     before.source.check_search(b)?;
     after.source.check_search(a)?;
+    // What a scene keeps within limits is held against them, where they are for these joints.
+    let held = after.works[a].as_ref().and_then(|work| work.limits_held.clone());
+    let held = held.filter(|_| before.results[b].has_skeleton_of(&after.results[a]));
     let pair = Pair {
         label: before.source.clip_label(b),
         index: b,
         before: before.results[b].clone(),
         after: after.results[a].clone(),
         kinds: SnagKind::defaults(),
-        limits: before.limits[b].clone(),
+        limits: before.limits[b].clone().or(held),
         passes: after.works[a].as_ref().map(Work::passes_run).unwrap_or_default(),
         meant: after.works[a].as_ref().map(|work| work.left.clone()).unwrap_or_default(),
     };

@@ -433,6 +433,8 @@ pub(super) enum Remedy {
     CloseLoop {
         /// Whether the difference is brought in near the seam alone.
         window: bool,
+        #[serde(default)]
+        first: usize,
         first_again: bool,
         with_rate: bool,
     },

@@ -1,7 +1,7 @@
 //! Passes between the document and the file: one pair of arms for each kind.
 
 use crate::blend::{JoinPlace, MixAlong, Reference, RootFrom, Side};
-use crate::clip::{Foot, JointPoint, Kernel, KeyEdit, Push, PushFrame, Smoothing};
+use crate::clip::{Foot, JointPoint, Kernel, KeyEdit, Push, PushFrame, Round, Smoothing};
 use crate::rotor::{Bivector, Rotor};
 use crate::scene::{
     BlendForm, BlendPass, ClipRef, Closing, KeysPass, LoopPass, MendPass, PassStep, PushPass, ReducePass,
@@ -264,11 +264,13 @@ fn snag_from(kind: SnagKind, snag: mirror::Snag) -> Result<Snag, String> {
             mirror::Remedy::TakeOutAbove(s, yz, zx, xy) => Remedy::TakeOutAbove(Rotor::new(s, yz, zx, xy)),
             mirror::Remedy::Clamp(limit) => Remedy::Clamp(limit_from(&snag.joint, &limit)?),
             mirror::Remedy::Ask => Remedy::Ask,
-            mirror::Remedy::CloseLoop { window, first_again, with_rate } => Remedy::CloseLoop(LoopClose {
-                form: if window { LoopForm::Window } else { LoopForm::Spread },
-                is_first_again: first_again,
-                with_rate,
-            }),
+            mirror::Remedy::CloseLoop { window, first, first_again, with_rate } => {
+                Remedy::CloseLoop(LoopClose {
+                    form: if window { LoopForm::Window } else { LoopForm::Spread },
+                    round: Round { first, is_first_again: first_again },
+                    with_rate,
+                })
+            }
             mirror::Remedy::Hold { limb, end_point, heel, ball, heel_frames, ball_frames, free } => {
                 let point =
                     |(joint, offset): (usize, (f64, f64, f64))| JointPoint { joint, offset: offset.into() };
@@ -316,7 +318,8 @@ fn snag_to(snag: &Snag, joint: String) -> mirror::Snag {
             Remedy::Ask => mirror::Remedy::Ask,
             Remedy::CloseLoop(how) => mirror::Remedy::CloseLoop {
                 window: how.form == LoopForm::Window,
-                first_again: how.is_first_again,
+                first: how.round.first,
+                first_again: how.round.is_first_again,
                 with_rate: how.with_rate,
             },
             Remedy::Hold(Plant { foot, heel, ball, free }) => mirror::Remedy::Hold {

@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use crate::blend;
-use crate::clip::{self, Clip};
+use crate::clip::{self, Clip, Round};
 use crate::mend::{LoopOptions, close_loop};
 use crate::snag::LoopForm;
 
@@ -51,6 +51,14 @@ const MET_RAD: f64 = 9e-5;
 /// More rounds than this, or more frames, are a slip of the hand.
 const MOST_ROUNDS: usize = 1000;
 const MOST_FRAMES: usize = 3_600_000;
+
+/// What lies before the first frame of the motion.
+fn calibration(first: usize) -> String {
+    match first {
+        1 => "the calibration pose of frame 0".to_owned(),
+        first => format!("the calibration pose of frames 0 to {}", first - 1),
+    }
+}
 
 impl Default for LoopPass {
     fn default() -> Self {
@@ -104,6 +112,14 @@ impl PassKind for LoopPass {
                 is_first_again: self.part_secs.map(|_| true),
                 ..LoopOptions::default()
             };
+            let first = Round::of(&made, options.up).first;
+            if first > 0 && self.rounds > 1 {
+                notes.push(format!("{} left out of the rounds", calibration(first)));
+                made = clip::cut(&made, made.grid.time(first), made.duration_secs);
+            } else if first > 0 {
+                notes
+                    .push(format!("the loop begins at frame {first}: {} stays as it is", calibration(first)));
+            }
             let (closed, report) = close_loop(&made, &options);
             made = closed;
             let open: Vec<_> = report.seams.iter().filter(|(_, seam)| seam.turn.length() > MET_RAD).collect();
@@ -117,7 +133,7 @@ impl PassKind for LoopPass {
                 ));
             }
             // A round takes its last frame for the next one's first.
-            if !report.is_first_again && self.rounds > 1 {
+            if !report.round.is_first_again && self.rounds > 1 {
                 made = blend::with_first_again(&made)?;
             }
         }
