@@ -20,7 +20,7 @@ const USUAL: f64 = 2.0;
 /// Up to here the difference is spread over the whole clip; beyond, that would be seen, and it is brought in near the seam.
 const SPREAD_RAD: f64 = 10.0 / 180.0 * std::f64::consts::PI;
 
-/// A joint that ends so far from where it begins may be no loop at all: whether to close it is for a person to say.
+/// A clip of which a joint ends so far from where it begins may be no loop at all: whether to close any of it is for a person to say.
 const MEANT_RAD: f64 = 30.0 / 180.0 * std::f64::consts::PI;
 
 /// A place that misses by less than this share of the figure is a loop well closed.
@@ -29,16 +29,21 @@ const LEAST_SHARE: f64 = 0.005;
 /// Steps looked at for what is usual.
 const LOOKED_AT: usize = 400;
 
-/// Finds the joints of a clip whose loop does not close; of fewer than four frames none.
+/// Finds the joints of a clip whose loop does not close; of fewer than four frames none. They are closed together or not at all.
 pub(super) fn find_all(clip: &Clip) -> Vec<Snag> {
     if clip.grid.count() < 4 {
         return Vec::new();
     }
     let round = Round::of(clip, DVec3::Y);
-    (0..clip.joints.len())
+    let mut seams: Vec<Snag> = (0..clip.joints.len())
         .filter(|&joint| clip.skeleton.joints()[joint].kind == JointKind::Joint)
         .filter_map(|joint| of_joint(clip, joint, round))
-        .collect()
+        .collect();
+    let is_loop = seams.iter().all(|seam| seam.size_rad <= MEANT_RAD);
+    for seam in &mut seams {
+        seam.safe = is_loop;
+    }
+    seams
 }
 
 fn of_joint(clip: &Clip, joint: usize, round: Round) -> Option<Snag> {
@@ -88,7 +93,7 @@ fn of_joint(clip: &Clip, joint: usize, round: Round) -> Option<Snag> {
         size_rad: turn.max(rate * step_secs).max(place),
         confidence: 1.0,
         remedy: Remedy::CloseLoop(LoopClose { form, round, with_rate: misses_rate }),
-        safe: turn <= MEANT_RAD,
+        safe: true,
         text: format!(
             "In a loop{from} {label} {} ({})",
             said.join(" and "),

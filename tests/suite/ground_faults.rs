@@ -211,11 +211,13 @@ fn a_calibration_pose_before_the_motion_is_not_of_the_loop() {
             let change = (0..=last).map(|key| was.keys[key].turn_to(is.keys[key])).fold(0.0, f64::max);
             // Half of what is missing at each end, and what brings the rates together.
             let most = 0.5 * missing.turn.length() + 0.05 * missing.turn_rate.length() + 1e-6;
-            assert!(change < most && change < 0.5, "{}: {change} of {most}", snag.text);
+            assert!(change < most, "{}: {change} of {most}", snag.text);
             let left = LoopSeam::of(&closed, joint, round, DVec3::Y);
             assert!(left.turn.length() < 1e-3 * missing.turn.length(), "{}: {left:?}", snag.text);
         }
         assert!(seams.len() > 5, "{}", seams.len());
+        // Arms that end 70° from where they begin are no loop: not half of it is closed unasked.
+        assert!(seams.iter().all(|snag| !snag.safe), "{seams:?}");
     }
 }
 

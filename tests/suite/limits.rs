@@ -577,7 +577,9 @@ fn scenes_and_files_give_limits_back() {
     let alone = Edit::SetLimits { work: 0, limits: None }.apply(&document).unwrap();
     assert_eq!(alone.works[0].limits_held().unwrap().joints.len(), 1);
     let mut off = alone.works[0].clone();
-    off.passes.iter_mut().for_each(|pass| pass.on = false);
+    for pass in &mut off.passes {
+        pass.on = false;
+    }
     assert_eq!(off.limits_held(), None);
 
     let label = |_: usize, _: usize, joint: usize| ["body", "limb"][joint].to_owned();
